@@ -1,0 +1,45 @@
+"""A figure with its interval, and, where one is missing, the reason."""
+
+from dataclasses import dataclass
+from enum import IntEnum
+
+import numpy as np
+from numpy.typing import NDArray
+
+from engine.ages import Array
+
+
+class Reason(IntEnum):
+    """Why a value (or only its interval) is missing. The sentences stand in server/sentences."""
+
+    NONE = 0
+    NOT_AVAILABLE = 1  # no data were delivered for this population-year
+    NO_POPULATION = 2  # person-years of 0 that no neighbour could be joined with
+    NO_DEATHS_IN_OPEN_GROUP = 3
+    OPEN_GROUP_TOO_LARGE = 4  # more than the settings' share of births reaches the open group
+    TOO_FEW_PERSON_YEARS = 5
+    AGE_NOT_ON_GRID = 6
+    MODE_AT_EDGE = 7  # the most common age would lie in the open group, or none was found
+    NO_DEATHS = 8
+    TOO_FEW_AGES = 9  # a law or slope cannot be fitted to fewer than the ages it needs
+    NO_SAMPLING_INTERVAL = 10  # a revision: the same deaths counted again
+    NOT_SIMULATED = 11  # the indicator has no delta interval, and no stream was given
+    WITHHELD = 12
+
+
+@dataclass(frozen=True, slots=True)
+class Estimate:
+    """Value and interval limits, each of the batch's shape; nan where missing, with its reason."""
+
+    value: Array
+    low: Array
+    high: Array
+    reason: NDArray[np.uint8]
+
+    def __getitem__(self, where: object) -> "Estimate":
+        return Estimate(
+            *(
+                np.asarray(part[where])
+                for part in (self.value, self.low, self.high, self.reason)  # type: ignore[index]
+            )
+        )

@@ -1,0 +1,138 @@
+"""What the store hands out: frozen records, never database rows."""
+
+import datetime as dt
+from dataclasses import dataclass, field
+
+from engine.ages import AgeGrid, Array
+
+MEASURES = ("deaths", "person_years", "births")
+STATUSES = ("final", "provisional")
+
+
+@dataclass(frozen=True, slots=True, order=True)
+class Key:
+    """Which schedule: one vector over age."""
+
+    area: str
+    sex: str  # f, m, p
+    period: str  # ISO 8601: "2014"
+    measure: str
+    cause: str = ""  # none: all causes
+
+
+@dataclass(frozen=True, slots=True)
+class Vector:
+    """The content of a schedule: status, grid and one number for each age group (nan: no number)."""
+
+    status: str
+    grid: AgeGrid
+    values: Array  # [age]
+
+
+@dataclass(frozen=True, slots=True)
+class Basis:
+    """How the counts of an edition were made; content of the edition."""
+
+    people: str  # "residents" or "occurrences"
+    dated_by: str  # "death" or "registration"
+    population: str  # "midyear" (mid-year population) or "person_years"
+    population_date: str  # in words or ISO: "1 July of each year"
+    source: str
+
+
+@dataclass(frozen=True, slots=True)
+class Area:
+    """One area of a collection. Parents are content of the edition, names are presentation."""
+
+    code: str
+    name: str
+    parent: str = ""  # code of the area it is part of; empty at the top
+    delivered: bool = False  # its counts were delivered as such, not summed from its parts
+
+
+@dataclass(frozen=True, slots=True)
+class Event:
+    """Something that befell an edition after it was made."""
+
+    what: str  # "withdrawn" or "reinstated"
+    at: dt.datetime
+    by: str
+    note: str
+
+
+@dataclass(frozen=True, slots=True)
+class Edition:
+    """One immutable state of a collection."""
+
+    number: int
+    base: int  # number of the edition it was built on; 0: none
+    made: dt.datetime  # UTC
+    by: str
+    note: str
+    digest: str  # content hash, 64 hex digits
+    upload: int | None
+    basis: Basis
+    events: tuple[Event, ...] = ()
+
+    @property
+    def withdrawn(self) -> bool:
+        return bool(self.events) and self.events[-1].what == "withdrawn"
+
+
+@dataclass(frozen=True, slots=True)
+class Collection:
+    id: int
+    code: str
+    name: str
+    owner: str  # the office that answers for the data
+    revision: int  # counts every change of standing, policy, names and notes
+
+
+@dataclass(frozen=True, slots=True)
+class UploadFile:
+    """A file as handed in, kept byte for byte."""
+
+    role: str  # "counts" (deaths and population in one), "deaths", "population", "births"
+    name: str
+    size: int
+    sha256: str
+    mapping: str  # JSON of intake.mapping.Mapping
+
+
+@dataclass(frozen=True, slots=True)
+class Upload:
+    """A draft: files, mapping, basis and checking report. Nothing else is a draft."""
+
+    id: int
+    collection: str  # code
+    received: dt.datetime
+    by: str
+    files: tuple[UploadFile, ...]
+    basis: Basis | None
+    reader: str  # version of the reader that made the report
+    report: str  # JSON list of problems; empty before the first check
+    edition: int | None  # number of the edition it became
+
+
+@dataclass(frozen=True, slots=True)
+class Change:
+    """What a commit will write, prepared before any lock is taken."""
+
+    collection: str
+    base: int  # newest standing edition the checks ran against; 0: none
+    cells: dict[Key, Vector]  # of the upload, with totals of sexes and areas summed
+    areas: tuple[Area, ...]
+    basis: Basis
+    upload: int | None = None
+    replace: bool = False  # True: nothing of the base stays
+
+
+@dataclass(frozen=True, slots=True)
+class Selection:
+    """Which schedules to load; None: all there are."""
+
+    areas: tuple[str, ...] | None = None
+    sexes: tuple[str, ...] | None = None
+    periods: tuple[str, ...] | None = None
+    measures: tuple[str, ...] | None = None
+    cause: str = field(default="")
