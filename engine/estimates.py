@@ -2,6 +2,7 @@
 
 from dataclasses import dataclass
 from enum import IntEnum
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -36,10 +37,8 @@ class Estimate:
     high: Array
     reason: NDArray[np.uint8]
 
-    def __getitem__(self, where: object) -> "Estimate":
+    def __getitem__(self, where: Any) -> "Estimate":
+        """Part of the batch."""
         return Estimate(
-            *(
-                np.asarray(part[where])
-                for part in (self.value, self.low, self.high, self.reason)  # type: ignore[index]
-            )
+            *(np.asarray(part[where]) for part in (self.value, self.low, self.high, self.reason))
         )

@@ -30,7 +30,8 @@ class Panel:
             ages = getattr(self, name).shape[-1]
             if ages != len(self.grid):
                 raise ValueError(
-                    f"{name} ends in {ages} age groups but the grid has {len(self.grid)}; put age last"
+                    f"{name} ends in {ages} age groups but the grid has {len(self.grid)}; "
+                    "put age last"
                 )
             if np.any(np.real(getattr(self, name)) < 0):
                 raise ValueError(f"{name} has a negative count; counts are at least 0")

@@ -1,50 +1,45 @@
 """The settings of one running Ebbline, read once from the environment."""
 
 import os
-from dataclasses import dataclass, field
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
 from pathlib import Path
 
-
-def _described(default: object, text: str) -> object:
-    return field(default=default, metadata={"text": text})
+# variable (after EBBLINE_) -> how to read it, and what it is
+VARIABLES: dict[str, tuple[Callable[[str], object], str]] = {
+    "data": (Path, "folder in which the database lives"),
+    "database_url": (str, "database address; empty means the SQLite file in the data folder"),
+    "host": (str, "address to serve on"),
+    "port": (int, "port to serve on"),
+    "upload_limit": (int, "largest upload, bytes"),
+    "language": (str, "language of the pages"),
+}
 
 
 @dataclass(frozen=True, slots=True)
 class Config:
     """Every field can be set by the environment variable EBBLINE_ and its name in capitals."""
 
-    data: Path = _described(Path("data"), "folder in which the database lives")  # type: ignore[assignment]
-    database_url: str = _described(  # type: ignore[assignment]
-        "", "database address; empty means the SQLite file ebbline.db in the data folder"
-    )
-    host: str = _described("127.0.0.1", "address to serve on")  # type: ignore[assignment]
-    port: int = _described(8000, "port to serve on")  # type: ignore[assignment]
-    upload_limit: int = _described(  # type: ignore[assignment]
-        60_000_000, "largest upload, bytes"
-    )
-    language: str = _described("en", "language of the pages")  # type: ignore[assignment]
+    data: Path = Path("data")
+    database_url: str = ""
+    host: str = "127.0.0.1"
+    port: int = 8000
+    upload_limit: int = 60_000_000
+    language: str = "en"
 
     @classmethod
-    def from_environment(cls, environment: "dict[str, str] | None" = None) -> "Config":
-        """Read the variables; ValueError names the one that cannot be read and what it should be."""
-        given = dict(os.environ if environment is None else environment)
+    def from_environment(cls, environment: Mapping[str, str] = os.environ) -> "Config":
+        """Read the variables; ValueError names one that cannot be read and what it should be."""
         values: dict[str, object] = {}
-        for name, kind in (
-            ("data", Path),
-            ("database_url", str),
-            ("host", str),
-            ("port", int),
-            ("upload_limit", int),
-            ("language", str),
-        ):
-            text = given.get(f"EBBLINE_{name.upper()}")
-            if text is None:
+        for name, (kind, text) in VARIABLES.items():
+            variable = f"EBBLINE_{name.upper()}"
+            if variable not in environment:
                 continue
             try:
-                values[name] = kind(text)
+                values[name] = kind(environment[variable])
             except ValueError as error:
                 raise ValueError(
-                    f"EBBLINE_{name.upper()} is {text!r}; it must be a whole number"
+                    f"{variable} ({text}) is {environment[variable]!r}; expected a whole number"
                 ) from error
         return cls(**values)  # type: ignore[arg-type]
 

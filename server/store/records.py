@@ -22,7 +22,7 @@ class Key:
 
 @dataclass(frozen=True, slots=True)
 class Vector:
-    """The content of a schedule: status, grid and one number for each age group (nan: no number)."""
+    """The content of a schedule: status, grid, and one number an age group (nan: no number)."""
 
     status: str
     grid: AgeGrid
