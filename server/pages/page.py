@@ -5,19 +5,9 @@ from typing import ClassVar, Literal
 
 from server.charts.chart import Chart
 from server.exports.table import Table
+from server.sentences.pieces import Piece, Sentence
 
-
-@dataclass(frozen=True, slots=True)
-class Piece:
-    """A run of words in a sentence, linked where it has an address. `emphasis`: 'interval' is set
-    in the second ink, 'strong' bold, 'rubric' as a caution's word."""
-
-    text: str
-    href: str = ""
-    emphasis: Literal["", "interval", "strong", "rubric"] = ""
-
-
-Sentence = tuple[Piece, ...]
+__all__ = ["Caution", "Frame", "Notice", "Page", "Piece", "Sentence"]
 
 
 @dataclass(frozen=True, slots=True)
