@@ -1,0 +1,78 @@
+"""The files the statistical office of Quillmere hands in: CSV in long form, one row a count."""
+
+from itertools import pairwise
+
+import numpy as np
+from numpy.typing import NDArray
+
+from seed_scenarios.quillmere_counts import REGIONS, SEXES, STARTS, WHOLE, YEARS, Counts, Region
+
+_WORDS = {"f": "women", "m": "men"}
+_PROVISIONAL = YEARS[-1]
+
+
+def deaths_csv(counted: dict[str, Counts], years: tuple[int, ...], areas: tuple[str, ...]) -> bytes:
+    """Deaths by year, area, sex and age, with the year's status."""
+    lines = ["year,status,area,area_name,sex,age,deaths"]
+    for region, year, sex, at in _cells(years, areas):
+        status = "provisional" if year == _PROVISIONAL else "final"
+        deaths = _closed(region, counted[region.code].deaths[at])
+        lines += [
+            f"{year},{status},{region.code},{region.name},{_WORDS[sex]},{age},{count}"
+            for age, count in zip(_ages(region), deaths, strict=True)
+        ]
+    return _text(lines)
+
+
+def population_csv(
+    counted: dict[str, Counts], years: tuple[int, ...], areas: tuple[str, ...]
+) -> bytes:
+    """Residents on 1 July by year, area, sex and age."""
+    lines = ["year,area,area_name,sex,age,population"]
+    for region, year, sex, at in _cells(years, areas):
+        people = _closed(region, counted[region.code].population[at])
+        lines += [
+            f"{year},{region.code},{region.name},{_WORDS[sex]},{age},{count}"
+            for age, count in zip(_ages(region), people, strict=True)
+        ]
+    return _text(lines)
+
+
+def births_csv(counted: dict[str, Counts], years: tuple[int, ...], areas: tuple[str, ...]) -> bytes:
+    """Live births by year, area and sex of the child."""
+    lines = ["year,area,area_name,sex,births"]
+    for region, year, sex, at in _cells(years, areas):
+        births = counted[region.code].births[at]
+        lines.append(f"{year},{region.code},{region.name},{_WORDS[sex]},{births}")
+    return _text(lines)
+
+
+def _cells(
+    years: tuple[int, ...], areas: tuple[str, ...]
+) -> list[tuple[Region, int, str, tuple[int, int]]]:
+    """Every area, year and sex asked for, with its place in the arrays."""
+    return [
+        (region, year, sex, (YEARS.index(year), row))
+        for region in (*REGIONS, WHOLE)
+        if region.code in areas
+        for year in years
+        for row, sex in enumerate(SEXES)
+    ]
+
+
+def _ages(region: Region) -> list[str]:
+    starts = STARTS[: STARTS.index(region.open_age) + 1]
+    closed = [
+        str(start) if end - start == 1 else f"{start}-{end - 1}" for start, end in pairwise(starts)
+    ]
+    return [*closed, f"{region.open_age}+"]
+
+
+def _closed(region: Region, counts: NDArray[np.int64]) -> list[int]:
+    """Counts by age with everyone from the region's open age in one group."""
+    last = STARTS.index(region.open_age)
+    return [*counts[:last].tolist(), int(counts[last:].sum())]
+
+
+def _text(lines: list[str]) -> bytes:
+    return ("\r\n".join(lines) + "\r\n").encode()
