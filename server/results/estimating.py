@@ -1,0 +1,54 @@
+"""Estimates of the usual indicators, with the random streams keyed by codes."""
+
+from collections.abc import Iterable
+
+import numpy as np
+from numpy.typing import NDArray
+
+from engine import indicators
+from engine.ages import Array
+from engine.estimates import Estimate
+from engine.panel import Panel
+from engine.settings import Settings
+from server.results.questions import PopulationYear
+
+# The indicators of a population-year and of a comparison, in the order of the pages.
+USUAL = ("e0", "e65", "median", "mode", "edagger", "H", "ageing_rate", "45q15", "5q0")
+
+
+def stream(collection: str, one: PopulationYear) -> NDArray[np.str_]:
+    """The code a population-year's draws are keyed by, no batch axes."""
+    return np.array(f"{collection}/{one.code}", dtype=np.str_)
+
+
+def pair_stream(collection: str, this: PopulationYear, that: PopulationYear) -> NDArray[np.str_]:
+    """The code a difference's draws are keyed by, no batch axes."""
+    return np.array(f"{collection}/{this.code}/{that.code}", dtype=np.str_)
+
+
+def estimates(
+    keys: Iterable[str], panel: Panel, settings: Settings, codes: NDArray[np.str_]
+) -> dict[str, Estimate]:
+    """Each indicator of a panel; `codes` has the panel's batch shape."""
+    return {
+        key: indicators.estimate(indicators.find(key), panel, settings, streams=codes)
+        for key in keys
+    }
+
+
+def differences(
+    keys: Iterable[str],
+    this: Panel,
+    that: Panel,
+    settings: Settings,
+    codes: NDArray[np.str_],
+    *,
+    shared: Array | None = None,
+) -> dict[str, Estimate]:
+    """This less that, both on one grid; `shared` deaths are counted once."""
+    return {
+        key: indicators.difference(
+            indicators.find(key), this, that, settings, shared=shared, streams=codes
+        )
+        for key in keys
+    }

@@ -1,0 +1,183 @@
+"""From an edition's schedules to panels: one statement, however many population-years are asked."""
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass, replace
+
+from engine.ages import AgeGrid, Array
+from engine.panel import Panel
+from server.results.questions import PopulationYear
+from server.sentences.names import listed
+from server.sentences.text import _
+from server.store import areas, schedules
+from server.store.connect import Session
+from server.store.records import Area, Collection, Key, Selection, Vector
+
+MEASURES = ("deaths", "person_years", "births")
+
+
+class NotInEdition(LookupError):
+    """A population-year, area or year the edition does not hold (404); its text lists what it
+    holds."""
+
+
+@dataclass(frozen=True, slots=True)
+class Loaded:
+    """What an edition holds of one population-year."""
+
+    panel: Panel  # no batch axes
+    status: str  # provisional where any part of it is
+    births: float | None
+
+
+@dataclass(frozen=True, slots=True)
+class Holdings:
+    """What an edition holds at all: areas in tree order, sexes, sorted periods, status of each."""
+
+    areas: tuple[Area, ...]
+    sexes: tuple[str, ...]
+    periods: tuple[str, ...]
+    status: dict[PopulationYear, str]
+
+    def name(self, area: str) -> str:
+        """The area's name; its code where it has none."""
+        return next((one.name for one in self.areas if one.code == area), "") or area
+
+    def require_area(self, code: str) -> None:
+        """NotInEdition where the edition has no such area."""
+        codes = [area.code for area in self.areas]
+        if code not in codes:
+            raise NotInEdition(
+                _(
+                    "This edition has no area {code}. Its areas are {areas}. Choose among these.",
+                    code=code,
+                    areas=listed(codes, most=12),
+                )
+            )
+
+    def require(self, wanted: PopulationYear) -> None:
+        """NotInEdition where the edition does not hold it."""
+        if wanted in self.status:
+            return
+        periods = self.periods
+        raise NotInEdition(
+            _(
+                "This edition does not hold {code}. Its areas are {areas}; its sexes {sexes}; its"
+                " years {first} to {last}. Choose among these.",
+                code=wanted.code,
+                areas=listed([area.code for area in self.areas], most=12),
+                sexes=listed(self.sexes),
+                first=periods[0] if periods else _("none"),
+                last=periods[-1] if periods else _("none"),
+            )
+        )
+
+    def previous(self, wanted: PopulationYear) -> PopulationYear | None:
+        """The same area and sex a year before, where the edition holds it."""
+        before = replace(wanted, period=f"{int(wanted.period) - 1:04}")
+        return before if before in self.status else None
+
+
+def holdings(session: Session, collection: Collection, number: int) -> Holdings:
+    """Two statements."""
+    contents = schedules.contents(session, collection, number)
+    return Holdings(
+        areas.listing(session, collection, number),
+        contents.sexes,
+        contents.periods,
+        {PopulationYear(*key): status for key, status in contents.status.items()},
+    )
+
+
+def load(
+    session: Session, collection: Collection, number: int, wanted: Iterable[PopulationYear]
+) -> dict[PopulationYear, Loaded]:
+    """Panels of those population-years that the edition holds; the others are left out.
+
+    Persons are made of women and men where it holds both, since their first-year rules differ.
+    """
+    asked = tuple(dict.fromkeys(wanted))
+    sexes = {one.sex for one in asked}
+    if "p" in sexes:
+        sexes |= {"f", "m"}
+    cells = schedules.load(
+        session,
+        collection,
+        number,
+        Selection(
+            areas=tuple(sorted({one.area for one in asked})),
+            sexes=tuple(sorted(sexes)),
+            periods=tuple(sorted({one.period for one in asked})),
+            measures=MEASURES,
+        ),
+    )
+    found = ((one, _assembled(cells, one)) for one in asked)
+    return {one: loaded for one, loaded in found if loaded is not None}
+
+
+def _assembled(cells: dict[Key, Vector], wanted: PopulationYear) -> Loaded | None:
+    if wanted.sex != "p":
+        return _single(cells, wanted)
+    women, men = (_single(cells, replace(wanted, sex=sex)) for sex in ("f", "m"))
+    if women is None or men is None:
+        return _single(cells, wanted)
+    births = None
+    if women.births is not None and men.births is not None:
+        births = women.births + men.births
+    return Loaded(
+        Panel.persons(women.panel, men.panel), _status((women.status, men.status)), births
+    )
+
+
+def _single(cells: dict[Key, Vector], wanted: PopulationYear) -> Loaded | None:
+    deaths, years, births = (
+        cells.get(Key(wanted.area, wanted.sex, wanted.period, measure)) for measure in MEASURES
+    )
+    if deaths is None or years is None:
+        return None
+    grid = deaths.grid.common(years.grid)
+    panel = Panel.of(
+        grid,
+        deaths.grid.regroup(deaths.values, grid),
+        years.grid.regroup(years.values, grid),
+        sex=wanted.sex,
+    )
+    return Loaded(
+        panel,
+        _status((deaths.status, years.status)),
+        None if births is None else float(births.values.sum()),
+    )
+
+
+def _status(parts: Sequence[str]) -> str:
+    return "provisional" if "provisional" in parts else "final"
+
+
+def overlap(
+    this: PopulationYear, that: PopulationYear, tree: Iterable[Area]
+) -> PopulationYear | None:
+    """The population-year whose deaths are counted in both, None where they share none.
+
+    They overlap in the same period, where one area is or lies within the other and the sexes are
+    equal or one is persons.
+    """
+    parents = {area.code: area.parent for area in tree}
+    if this.period != that.period:
+        return None
+    if "p" not in (this.sex, that.sex) and this.sex != that.sex:
+        return None
+    sex = that.sex if this.sex == "p" else this.sex
+    for inner, outer in ((this.area, that.area), (that.area, this.area)):
+        if outer in _lineage(inner, parents):
+            return PopulationYear(inner, sex, this.period)
+    return None
+
+
+def _lineage(area: str, parents: dict[str, str]) -> Iterable[str]:
+    while area:
+        yield area
+        area = parents.get(area, "")
+
+
+def shared_deaths(shared: Loaded | None, grid: AgeGrid) -> Array | None:
+    """Deaths of the overlap on the grid two panels are compared on; None where there are none."""
+    return None if shared is None else shared.panel.regroup(grid).deaths

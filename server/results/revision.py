@@ -1,0 +1,50 @@
+"""By how much a newer edition moves a page's headline: exact, since it is no matter of chance."""
+
+import datetime as dt
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
+
+import numpy as np
+
+from server.results.loading import Loaded, load
+from server.results.questions import PopulationYear
+from server.store import editions
+from server.store.connect import Session
+from server.store.heading import Heading
+
+
+@dataclass(frozen=True, slots=True)
+class Moved:
+    """The headline in the newest standing edition; nan where that edition cannot give it."""
+
+    number: int
+    made: dt.datetime
+    value: float
+
+    def by(self, here: float) -> float:
+        """The newer headline less the one here."""
+        return self.value - here
+
+
+def moved(
+    session: Session,
+    heading: Heading,
+    wanted: Iterable[PopulationYear],
+    headline: Callable[[dict[PopulationYear, Loaded]], float],
+) -> Moved | None:
+    """None where no edition newer than the heading's stands.
+
+    `headline` answers from the population-years wanted; a KeyError in it means that the newer
+    edition lacks one of them.
+    """
+    if heading.newest is None or heading.newest <= heading.edition.number:
+        return None
+    newer = editions.find(session, heading.collection, heading.newest)
+    if newer is None:
+        return None
+    held = load(session, heading.collection, newer.number, wanted)
+    try:
+        value = headline(held)
+    except KeyError:
+        value = np.nan
+    return Moved(newer.number, newer.made, value)

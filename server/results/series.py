@@ -1,0 +1,182 @@
+"""One indicator through the years, for chosen areas and sexes: the trend's numbers."""
+
+from dataclasses import dataclass
+from typing import TypeVar
+
+import numpy as np
+from numpy.typing import NDArray
+
+from engine import indicators
+from engine import settings as named
+from engine.ages import AgeGrid
+from engine.estimates import Estimate, Reason
+from engine.indicators import Indicator
+from engine.panel import Panel
+from engine.settings import Settings
+from server.results.estimating import pair_stream, stream
+from server.results.loading import Holdings, Loaded, NotInEdition, holdings, load
+from server.results.questions import PopulationYear, TrendQuestion
+from server.sentences.numbers import whole
+from server.sentences.text import _
+from server.store.connect import Session
+from server.store.heading import Heading
+
+T = TypeVar("T")
+
+MOST = 5_000  # population-years a question may ask for
+MOST_SIMULATED = 500  # where every one is simulated some hundred times
+
+
+class TooLarge(ValueError):
+    """A question above the cap (422); its text says the limit and how to ask for less."""
+
+
+@dataclass(frozen=True, slots=True)
+class Series:
+    """Estimates [line, period]; a line is an area and sex, in the question's order."""
+
+    heading: Heading
+    holdings: Holdings
+    question: TrendQuestion
+    settings: Settings
+    indicator: Indicator
+    lines: tuple[tuple[str, str], ...]
+    periods: tuple[str, ...]
+    estimate: Estimate
+    status: tuple[tuple[str, ...], ...]  # [line][period]: final, provisional; "" where not held
+    open_ages: tuple[tuple[int | None, ...], ...]  # [line][period]: where the table ends
+    ends: tuple[tuple[str, str] | None, ...]  # [line]: first and last year with a value
+    change: Estimate  # [line]: value at the last of `ends` less that at the first
+
+
+def series(session: Session, heading: Heading, question: TrendQuestion) -> Series:
+    """All lines and years of a completed question: two statements, one engine call a grid.
+
+    Raises: NotInEdition where nothing asked for is held; TooLarge.
+    """
+    held = holdings(session, heading.collection, heading.edition.number)
+    settings, indicator = named.find(question.settings), indicators.find(question.of)
+    lines, periods = question.series, _periods(held, question)
+    wanted = [PopulationYear(*line, period) for line in lines for period in periods]
+    _require(held, question, wanted, indicator)
+    loaded = load(session, heading.collection, heading.edition.number, wanted)
+    collection = heading.collection.code
+    estimate = _by_grid(collection, wanted, loaded, indicator, settings)[
+        np.arange(len(wanted)).reshape(len(lines), len(periods))
+    ]
+    ends = tuple(_ends(row, periods) for row in estimate.value)
+    found = [loaded.get(one) for one in wanted]
+    return Series(
+        heading=heading,
+        holdings=held,
+        question=question,
+        settings=settings,
+        indicator=indicator,
+        lines=lines,
+        periods=periods,
+        estimate=estimate,
+        status=_rows([one.status if one else "" for one in found], len(periods)),
+        open_ages=_rows([one.panel.grid.open_age if one else None for one in found], len(periods)),
+        ends=ends,
+        change=_changes(collection, lines, ends, loaded, indicator, settings),
+    )
+
+
+def _periods(held: Holdings, question: TrendQuestion) -> tuple[str, ...]:
+    return tuple(period for period in held.periods if question.first <= period <= question.last)
+
+
+def _require(
+    held: Holdings,
+    question: TrendQuestion,
+    wanted: list[PopulationYear],
+    indicator: Indicator,
+) -> None:
+    for area in question.areas:
+        held.require_area(area)
+    if not any(one in held.status for one in wanted):
+        raise NotInEdition(
+            _(
+                "This edition holds nothing for these areas and sexes from {first} to {last}. Its"
+                " years are {start} to {end}.",
+                first=question.first,
+                last=question.last,
+                start=held.periods[0] if held.periods else _("none"),
+                end=held.periods[-1] if held.periods else _("none"),
+            )
+        )
+    limit = MOST if indicator.smooth else MOST_SIMULATED
+    if len(wanted) > limit:
+        raise TooLarge(
+            _(
+                "This asks for {asked} areas, sexes and years of {label}; a page draws at most"
+                " {limit}. Choose fewer areas or a shorter span of years.",
+                asked=whole(len(wanted)),
+                label=_(indicator.label),
+                limit=whole(limit),
+            )
+        )
+
+
+def _by_grid(
+    collection: str,
+    wanted: list[PopulationYear],
+    loaded: dict[PopulationYear, Loaded],
+    indicator: Indicator,
+    settings: Settings,
+) -> Estimate:
+    """One estimate a population-year, [wanted]; those not held say so."""
+    count = len(wanted)
+    values, lows, highs = (np.full(count, np.nan) for _part in range(3))
+    reasons = np.full(count, Reason.NOT_AVAILABLE, np.uint8)
+    places: dict[AgeGrid, list[int]] = {}
+    for index, one in enumerate(wanted):
+        if one in loaded:
+            places.setdefault(loaded[one].panel.grid, []).append(index)
+    for indexes in places.values():
+        panel = Panel.stack([loaded[wanted[index]].panel for index in indexes])
+        codes = np.stack([stream(collection, wanted[index]) for index in indexes])
+        part = indicators.estimate(indicator, panel, settings, streams=codes)
+        values[indexes], lows[indexes], highs[indexes] = part.value, part.low, part.high
+        reasons[indexes] = part.reason
+    return Estimate(values, lows, highs, reasons)
+
+
+def _ends(values: NDArray[np.float64], periods: tuple[str, ...]) -> tuple[str, str] | None:
+    known = np.flatnonzero(np.isfinite(values))
+    if len(known) < 2:
+        return None
+    return periods[known[0]], periods[known[-1]]
+
+
+def _changes(
+    collection: str,
+    lines: tuple[tuple[str, str], ...],
+    ends: tuple[tuple[str, str] | None, ...],
+    loaded: dict[PopulationYear, Loaded],
+    indicator: Indicator,
+    settings: Settings,
+) -> Estimate:
+    """The last year with a value less the first, [line], each pair on the grid it shares."""
+    gap = np.full(len(lines), np.nan)
+    out = Estimate(gap, gap.copy(), gap.copy(), np.full(len(lines), Reason.NOT_AVAILABLE, np.uint8))
+    for index, (line, pair) in enumerate(zip(lines, ends, strict=True)):
+        if pair is None:
+            continue
+        first, last = (PopulationYear(*line, period) for period in pair)
+        this, that = loaded[last].panel, loaded[first].panel
+        grid = this.grid.common(that.grid)
+        part = indicators.difference(
+            indicator,
+            this.regroup(grid),
+            that.regroup(grid),
+            settings,
+            streams=pair_stream(collection, last, first),
+        )
+        out.value[index], out.low[index], out.high[index] = part.value, part.low, part.high
+        out.reason[index] = part.reason
+    return out
+
+
+def _rows(flat: list[T], width: int) -> tuple[tuple[T, ...], ...]:
+    return tuple(tuple(flat[at : at + width]) for at in range(0, len(flat), width))

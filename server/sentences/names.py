@@ -1,0 +1,57 @@
+"""What populations and lists are called in words."""
+
+from collections.abc import Sequence
+
+from server.sentences.text import _, n_
+
+
+def sex(code: str) -> str:
+    """Women, men or persons, inside a sentence."""
+    return {"f": _("women"), "m": _("men"), "p": _("persons")}[code]
+
+
+def population(code: str, area: str) -> str:
+    """Inside a sentence: women of Northlade.
+
+    >>> population("f", "Northlade")
+    'women of Northlade'
+    """
+    return {
+        "f": _("women of {area}", area=area),
+        "m": _("men of {area}", area=area),
+        "p": _("persons of {area}", area=area),
+    }[code]
+
+
+def population_first(code: str, area: str) -> str:
+    """At the head of a sentence: Women of Northlade."""
+    return {
+        "f": _("Women of {area}", area=area),
+        "m": _("Men of {area}", area=area),
+        "p": _("Persons of {area}", area=area),
+    }[code]
+
+
+def sex_and_year(code: str, period: str) -> str:
+    """As a label: women 2012."""
+    return _("{sex} {year}", sex=sex(code), year=period)
+
+
+def listed(parts: Sequence[str], *, most: int = 40) -> str:
+    """Names in a row; beyond `most` only how many more there are.
+
+    >>> listed(["a", "b", "c"]), listed(["a", "b", "c", "d"], most=2)
+    ('a, b and c', 'a, b and 2 more')
+    """
+    if not parts:
+        return _("none")
+    if len(parts) > most:
+        rest = len(parts) - most
+        return _(
+            "{names} and {more}",
+            names=", ".join(parts[:most]),
+            more=n_("{count} more", "{count} more", rest),
+        )
+    if len(parts) == 1:
+        return parts[0]
+    return _("{names} and {last}", names=", ".join(parts[:-1]), last=parts[-1])

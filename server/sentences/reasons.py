@@ -1,0 +1,44 @@
+"""Why a figure or its interval is missing, in words."""
+
+from engine.estimates import Reason
+from engine.settings import Settings
+from server.sentences.numbers import number, whole
+from server.sentences.text import _
+
+
+def reason(code: int, settings: Settings) -> str:
+    """One sentence, for a note under a table or in the place of an answer."""
+    share = number(100 * settings.open_share, 0)
+    sentences = {
+        Reason.NONE: "",
+        Reason.NOT_AVAILABLE: _("No counts were delivered for this area, sex and year."),
+        Reason.NO_POPULATION: _(
+            "Nobody was counted at some ages, and no neighbouring age can stand in for them."
+        ),
+        Reason.NO_DEATHS_IN_OPEN_GROUP: _(
+            "Nobody died in the last, open age group, so that its death rate is not known."
+        ),
+        Reason.OPEN_GROUP_TOO_LARGE: _(
+            "More than {share} % of those born would reach the last, open age group, and how their"
+            " deaths are spread over the ages beyond is not known.",
+            share=share,
+        ),
+        Reason.TOO_FEW_PERSON_YEARS: _(
+            "Fewer than {least} person-years were lived: too few for this figure to mean anything.",
+            least=whole(settings.least_exposure),
+        ),
+        Reason.AGE_NOT_ON_GRID: _(
+            "The age it begins at is not the beginning of an age group here."
+        ),
+        Reason.MODE_AT_EDGE: _("Deaths have no peak below the last, open age group."),
+        Reason.NO_DEATHS: _("Nobody died at the ages it is read from."),
+        Reason.TOO_FEW_AGES: _("There are too few age groups to read it from."),
+        Reason.NO_SAMPLING_INTERVAL: _(
+            "The same deaths are counted on both sides, so that chance plays no part."
+        ),
+        Reason.NOT_SIMULATED: _("No interval was simulated for it."),
+        Reason.WITHHELD: _(
+            "It is withheld, since it rests on so few deaths that a person might be recognised."
+        ),
+    }
+    return sentences[Reason(code)]
