@@ -1,0 +1,83 @@
+"""A real Chromium and real sites. Without Chromium these tests are skipped, saying so; with
+EBBLINE_REQUIRE_REAL=1 its lack is a failure."""
+
+import os
+import shutil
+from collections.abc import Callable, Iterator
+from pathlib import Path
+
+import pytest
+from playwright.sync_api import Browser, sync_playwright
+
+from tests.browser.site import Site
+from tests.browser.visitor import Visitor, enter
+
+_ARGUMENTS = [
+    "--no-sandbox",
+    "--disable-gpu",
+    "--disable-background-networking",
+    "--disable-component-update",
+    "--disable-sync",
+    "--no-first-run",
+    "--disable-default-apps",
+    "--disable-extensions",
+    "--disable-dev-shm-usage",
+]
+Enter = Callable[..., Visitor]
+
+
+def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
+    here = Path(__file__).parent
+    for item in items:
+        if here in item.path.parents:
+            item.add_marker(pytest.mark.browser)
+
+
+@pytest.fixture(scope="session")
+def browser() -> Iterator[Browser]:
+    program = shutil.which("chromium") or shutil.which("chromium-browser")
+    if program is None:
+        why = "Chromium not found; on Debian: apt-get install chromium"
+        if os.environ.get("EBBLINE_REQUIRE_REAL"):
+            pytest.fail(why)
+        pytest.skip(why)
+    with sync_playwright() as playwright:
+        launched = playwright.chromium.launch(executable_path=program, args=_ARGUMENTS)
+        yield launched
+        launched.close()
+
+
+@pytest.fixture(scope="session")
+def demo_site(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Site]:
+    """The demonstration collection, served; only read from."""
+    site = Site(tmp_path_factory.mktemp("demo"))
+    site.start("demo")
+    yield site
+    site.stop()
+
+
+@pytest.fixture
+def empty_site(tmp_path: Path) -> Iterator[Site]:
+    """A site on an empty database, for one test."""
+    site = Site(tmp_path)
+    made = site.command("database", "make")
+    assert made.returncode == 0, made.stdout + made.stderr
+    site.start()
+    yield site
+    site.stop()
+
+
+@pytest.fixture
+def visit(browser: Browser) -> Iterator[Enter]:
+    """Enter a site: visit(site), visit(site, size='narrow'), visit(site, scripts=False). At the
+    end no visitor may have a complaint."""
+    entered: list[Visitor] = []
+
+    def begin(site: Site, *, size: str = "wide", scripts: bool = True) -> Visitor:
+        entered.append(enter(browser, site.address, size=size, scripts=scripts))
+        return entered[-1]
+
+    yield begin
+    for visitor in entered:
+        visitor.context.close()
+    assert [complaint for visitor in entered for complaint in visitor.complaints] == []
