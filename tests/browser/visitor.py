@@ -13,7 +13,7 @@ _WATCH = """document.addEventListener("securitypolicyviolation", event =>
   reportViolation(event.violatedDirective + " " + event.blockedURI))"""
 
 
-@dataclass(slots=True)
+@dataclass  # no slots: Playwright marks the owner of a handler
 class Visitor:
     """`page` is a Playwright page; `complaints` must be empty at the end of every test."""
 
