@@ -3,11 +3,11 @@
 from dataclasses import dataclass, replace
 
 import numpy as np
-from engine.chain import run
 
 from engine import decomposition, indicators
 from engine import settings as named
 from engine.ages import AgeGrid, Array
+from engine.chain import run
 from engine.estimates import Estimate, Reason
 from engine.panel import Panel
 from engine.settings import Settings
@@ -78,12 +78,12 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
     """Load both, bring them to one grid, take the difference apart. NotInEdition."""
     collection = heading.collection
     settings = named.find(question.settings)
-    held = holdings(session, collection, heading.edition.number)
+    held = holdings(session, collection.code, heading.edition.number)
     for wanted in (question.this, question.that):
         held.require(wanted)
     both = overlap(question.this, question.that, held.areas)
     asked = [question.this, question.that, *([both] if both else [])]
-    loaded = load(session, collection, heading.edition.number, asked)
+    loaded = load(session, collection.code, heading.edition.number, asked)
     this, that = _sides(collection.code, question, loaded, settings)
     shared = shared_deaths(loaded.get(both) if both else None, this.panel.grid)
     codes = pair_stream(collection.code, question.this, question.that)

@@ -10,7 +10,7 @@ from server.sentences.names import listed
 from server.sentences.text import _
 from server.store import areas, schedules
 from server.store.connect import Session
-from server.store.records import Area, Collection, Key, Selection, Vector
+from server.store.records import Area, Key, Selection, Vector
 
 MEASURES = ("deaths", "person_years", "births")
 
@@ -77,7 +77,7 @@ class Holdings:
         return before if before in self.status else None
 
 
-def holdings(session: Session, collection: Collection, number: int) -> Holdings:
+def holdings(session: Session, collection: str, number: int) -> Holdings:
     """Two statements."""
     contents = schedules.contents(session, collection, number)
     return Holdings(
@@ -89,7 +89,7 @@ def holdings(session: Session, collection: Collection, number: int) -> Holdings:
 
 
 def load(
-    session: Session, collection: Collection, number: int, wanted: Iterable[PopulationYear]
+    session: Session, collection: str, number: int, wanted: Iterable[PopulationYear]
 ) -> dict[PopulationYear, Loaded]:
     """Panels of those population-years that the edition holds; the others are left out.
 

@@ -39,10 +39,10 @@ def moved(
     """
     if heading.newest is None or heading.newest <= heading.edition.number:
         return None
-    newer = editions.find(session, heading.collection, heading.newest)
+    newer = editions.find(session, heading.collection.code, heading.newest)
     if newer is None:
         return None
-    held = load(session, heading.collection, newer.number, wanted)
+    held = load(session, heading.collection.code, newer.number, wanted)
     try:
         value = headline(held)
     except KeyError:

@@ -54,12 +54,12 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
 
     Raises: NotInEdition where nothing asked for is held; TooLarge.
     """
-    held = holdings(session, heading.collection, heading.edition.number)
+    held = holdings(session, heading.collection.code, heading.edition.number)
     settings, indicator = named.find(question.settings), indicators.find(question.of)
     lines, periods = question.series, _periods(held, question)
     wanted = [PopulationYear(*line, period) for line in lines for period in periods]
     _require(held, question, wanted, indicator)
-    loaded = load(session, heading.collection, heading.edition.number, wanted)
+    loaded = load(session, heading.collection.code, heading.edition.number, wanted)
     collection = heading.collection.code
     estimate = _by_grid(collection, wanted, loaded, indicator, settings)[
         np.arange(len(wanted)).reshape(len(lines), len(periods))

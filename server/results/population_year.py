@@ -1,0 +1,120 @@
+"""All that is read off one area, sex and year, and off the change from the year before."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from engine import ageing, indicators, sensitivity
+from engine import settings as named
+from engine.ages import Array
+from engine.chain import Chain, run
+from engine.estimates import Estimate
+from engine.settings import Settings
+from server.results.estimating import USUAL, differences, estimates, pair_stream, stream
+from server.results.loading import Holdings, Loaded, holdings, load
+from server.results.questions import PopulationYear, PopulationYearQuestion
+from server.results.revision import Moved, moved
+from server.store.connect import Session
+from server.store.heading import Heading
+
+
+@dataclass(frozen=True, slots=True)
+class Before:
+    """The year before, and what changed since."""
+
+    of: PopulationYear
+    loaded: Loaded
+    estimates: dict[str, Estimate]
+    change: dict[str, Estimate]  # the year asked for less the one before, on the grid they share
+
+
+@dataclass(frozen=True, slots=True)
+class Findings:
+    """One population-year, read in every usual way."""
+
+    heading: Heading
+    holdings: Holdings
+    question: PopulationYearQuestion
+    settings: Settings
+    loaded: Loaded
+    chain: Chain
+    estimates: dict[str, Estimate]
+    before: Before | None  # None where the edition lacks the year before
+    rises: ageing.Rises
+    gain: Array  # years of life expectancy at birth for 1 % lower rates, by age group
+    moved: Moved | None
+
+    @property
+    def of(self) -> PopulationYear:
+        return self.question.of
+
+    @property
+    def name(self) -> str:
+        """The area's name."""
+        return self.holdings.name(self.of.area)
+
+
+def population_year(
+    session: Session, heading: Heading, question: PopulationYearQuestion
+) -> Findings:
+    """Load it and the year before, and read off every usual indicator. NotInEdition."""
+    collection, number = heading.collection.code, heading.edition.number
+    settings = named.find(question.settings)
+    held = holdings(session, collection, number)
+    held.require(question.of)
+    previous = held.previous(question.of)
+    wanted = [question.of, *([previous] if previous else [])]
+    loaded = load(session, collection, number, wanted)
+    panel = loaded[question.of].panel
+    return Findings(
+        heading=heading,
+        holdings=held,
+        question=question,
+        settings=settings,
+        loaded=loaded[question.of],
+        chain=run(panel, settings),
+        estimates=estimates(USUAL, panel, settings, stream(collection, question.of)),
+        before=_before(collection, question.of, previous, loaded, settings),
+        rises=ageing.rises(panel),
+        gain=sensitivity.gain_per_percent(indicators.find("e0"), panel, settings),
+        moved=moved(
+            session,
+            heading,
+            [question.of],
+            lambda newer: _life_expectancy(newer[question.of], settings),
+        ),
+    )
+
+
+def _before(
+    collection: str,
+    of: PopulationYear,
+    previous: PopulationYear | None,
+    loaded: dict[PopulationYear, Loaded],
+    settings: Settings,
+) -> Before | None:
+    if previous is None or previous not in loaded:
+        return None
+    this, that = loaded[of].panel, loaded[previous].panel
+    grid = this.grid.common(that.grid)
+    return Before(
+        previous,
+        loaded[previous],
+        estimates(USUAL, that, settings, stream(collection, previous)),
+        differences(
+            USUAL,
+            this.regroup(grid),
+            that.regroup(grid),
+            settings,
+            pair_stream(collection, of, previous),
+        ),
+    )
+
+
+def _life_expectancy(loaded: Loaded, settings: Settings) -> float:
+    return float(indicators.estimate(indicators.find("e0"), loaded.panel, settings).value)
+
+
+def finite(estimate: Estimate) -> bool:
+    """Whether there is a value to print."""
+    return bool(np.isfinite(estimate.value))
