@@ -1,0 +1,69 @@
+"""A table as plain rows of numbers and texts, the form CSV and XLSX share.
+
+A gap leaves its cell empty and says its kind in a column of its own, `<key>_missing`; a second line
+under a first cell becomes `remark`; `provisional` is "yes" where a row's numbers are. These columns
+are there only where the table has something to put into them. A sum is the last row.
+"""
+
+import math
+from dataclasses import dataclass
+
+from server.exports.table import Cell, Column, Gap, Row, Table
+
+Plain = str | int | float | None
+
+
+@dataclass(frozen=True, slots=True)
+class Flat:
+    headings: tuple[str, ...]
+    rows: tuple[tuple[Plain, ...], ...]
+
+
+def flat(table: Table) -> Flat:
+    """The table's cells and companions.
+
+    Raises: ValueError where a row has more or fewer cells than there are columns, or a number is
+    not finite.
+    """
+    rows = all_rows(table)
+    headings, parts = [], []
+    for index, column in enumerate(table.columns):
+        cells = [row.cells[index] for row in rows]
+        headings.append(column.key)
+        parts.append([plain(cell, table, column) for cell in cells])
+        if any(isinstance(cell, Gap) for cell in cells):
+            headings.append(f"{column.key}_missing")
+            parts.append([cell.kind.value if isinstance(cell, Gap) else None for cell in cells])
+    if any(row.second for row in rows):
+        headings.append("remark")
+        parts.append([row.second for row in rows])
+    if any(row.provisional for row in rows):
+        headings.append("provisional")
+        parts.append(["yes" if row.provisional else None for row in rows])
+    return Flat(tuple(headings), tuple(zip(*parts, strict=True)))
+
+
+def all_rows(table: Table) -> tuple[Row, ...]:
+    """The rows and the sum, each with one cell a column."""
+    rows = (*table.rows, table.total) if table.total else table.rows
+    for number, row in enumerate(rows, start=1):
+        if len(row.cells) != len(table.columns):
+            raise ValueError(
+                f"row {number} of table {table.key} has {len(row.cells)} cells; "
+                f"it has {len(table.columns)} columns"
+            )
+    return rows
+
+
+def plain(cell: Cell, table: Table, column: Column) -> Plain:
+    """A number as it is, in Python's own type; None for a gap."""
+    if isinstance(cell, Gap):
+        return None
+    if isinstance(cell, str):
+        return str(cell)
+    if not math.isfinite(cell):
+        raise ValueError(
+            f"table {table.key}, column {column.key}: found {cell!r}; expected a number or a Gap "
+            "that says why there is none"
+        )
+    return float(cell) if isinstance(cell, float) else int(cell)

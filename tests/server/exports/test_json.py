@@ -1,0 +1,41 @@
+"""JSON: figures by table, gaps with their kind, and nothing in the figures but figures."""
+
+from dataclasses import replace
+
+import orjson
+
+from server.exports import json
+from tests.server.exports.tables import YEARS, a_twin
+
+
+def test_what_the_file_holds() -> None:
+    content = orjson.loads(json.write(a_twin()))
+    assert content["address"] == "/c/x/1/trend?of=e0"
+    assert content["notices"] == [{"word": "Withdrawn", "text": "It was withdrawn."}]
+    figures = content["figures"]["years"]
+    assert figures["columns"][2] == {
+        "key": "e0",
+        "label": "women",
+        "unit": "years",
+        "group": "Saltmarsh",
+    }
+    assert figures["rows"][0] == {"year": 2011, "area": "=1+1", "e0": 1 / 3, "change": -0.125}
+    assert figures["rows"][1]["e0"] == {"missing": "withheld", "reason": "few deaths"}
+    assert figures["rows"][1]["provisional"] is True
+    assert figures["rows"][2]["change"] == {"missing": "nil"}
+    assert figures["total"] == {"year": "sum", "area": "", "e0": 82.5, "change": 0.375}
+
+
+def test_a_notice_leaves_the_bytes_of_the_figures_as_they_are() -> None:
+    before = json.write(a_twin())
+    after = json.write(replace(a_twin(), notices=()))
+    assert before != after
+    assert before.partition(b'"figures"')[2] == after.partition(b'"figures"')[2]
+
+
+def test_every_number_of_the_table_is_in_the_file() -> None:
+    rows = orjson.loads(json.write(a_twin()))["figures"]["years"]["rows"]
+    for row, written in zip(YEARS.rows, rows, strict=True):
+        for column, cell in zip(YEARS.columns, row.cells, strict=True):
+            if isinstance(cell, float):
+                assert written[column.key] == cell
