@@ -1,0 +1,66 @@
+"""The chain of stages that turns a panel into a life table, and its pullback to the raw rates."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from engine.ages import Array
+from engine.panel import Panel
+from engine.settings import Settings
+from engine.stages.open_interval import OPEN_INTERVALS, Closed
+from engine.stages.rates import Rates, death_rates, given_rates
+from engine.stages.separation import Separation, separate
+from engine.tables import LifeTable, Partials, from_rates
+from engine.tables import pull as pull_table
+
+
+@dataclass(frozen=True, slots=True)
+class Chain:
+    """A panel taken through the stages of its settings.
+
+    `rates` is on the panel's grid; `table` is on that grid too, or, where a law spreads the open
+    group, on one that runs in single years up to 130.
+    """
+
+    panel: Panel
+    settings: Settings
+    rates: Rates
+    closed: Closed
+    separation: Separation
+    table: LifeTable
+
+    @property
+    def modelled(self) -> bool:
+        """Whether a fitted law stands above the open age."""
+        return self.closed.law_from is not None
+
+    @property
+    def open_reach(self) -> Array:
+        """Share of births that reach the open age of the panel's grid, [...]."""
+        return self.table.lx[..., len(self.panel.grid) - 1]
+
+    def pull(self, partials: Partials) -> Array:
+        """Gradient in the raw mx of the panel's grid, exposure held, from partials by column."""
+        g = pull_table(self.table, partials)
+        return self.rates.pull(self.closed.pull(g.mx + self.separation.pull(g.ax)))
+
+
+def run(panel: Panel, settings: Settings, *, mx: Array | None = None) -> Chain:
+    """The panel's life tables.
+
+    With `mx` [..., age] the rates are taken from there, each group for itself, and the panel gives
+    only person-years and the infants' mix: so the chain can be followed along a path of rates, or
+    stepped into the complex plane.
+
+    Missing: nan rates give nan where they matter; open groups without deaths close at nan by 1 / m.
+    """
+    deaths, exposure = np.broadcast_arrays(panel.deaths, panel.exposure)
+    exposure = np.ascontiguousarray(exposure)
+    if mx is None:
+        rates = death_rates(np.ascontiguousarray(deaths), exposure)
+    else:
+        rates = given_rates(np.ascontiguousarray(mx), exposure)
+    closed = OPEN_INTERVALS[settings.open_interval](panel.grid, rates, settings)
+    separation = separate(closed, panel.infant_weight, panel.infant_ratio, settings)
+    table = from_rates(closed.grid, closed.mx, separation.ax)
+    return Chain(panel, settings, rates, closed, separation, table)

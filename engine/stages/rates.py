@@ -1,0 +1,60 @@
+"""Counts to death rates; an age group without person-years is joined with the one below it."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from engine.ages import Array
+
+
+@dataclass(frozen=True, slots=True)
+class Rates:
+    """Raw rates on the input grid and the counts behind them, each [..., age]."""
+
+    mx: Array  # joined groups carry the rate of the whole join
+    deaths: Array
+    exposure: Array
+    joined: NDArray[np.bool_]  # the group shares its rate with a neighbour
+    variance: Array  # of the raw rate: deaths / exposure^2; 0 where the group lies in a lower one
+
+    def pull(self, g: Array) -> Array:
+        """Gradient in the raw rates from the gradient in the joined ones: a join's parts add up in
+        its lowest group, which owns the person-years."""
+        empty, g = self.exposure == 0, g.copy()
+        for x in reversed(range(1, g.shape[-1])):
+            g[..., x - 1] += np.where(empty[..., x], g[..., x], 0.0)
+            g[..., x] = np.where(empty[..., x], 0.0, g[..., x])
+        return g
+
+
+def death_rates(deaths: Array, exposure: Array) -> Rates:
+    """Central death rates, mx = deaths / exposure.
+
+    Shape:   deaths, exposure [..., age].
+    Missing: nan in, nan out. Exposure of 0 takes the rate of the join with the group below (and
+             with what that one is joined with); at age 0, which has none below, nan.
+    Source:  Preston, Heuveline & Guillot (2001), Demography, ch. 3.
+    >>> death_rates(np.array([3.0, 8.0, 2.0]), np.array([1000.0, 400.0, 0.0])).mx
+    array([0.003, 0.025, 0.025])
+    """
+    empty = exposure == 0
+    pooled = np.array(deaths)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        for x in reversed(range(1, pooled.shape[-1])):
+            pooled[..., x - 1] += np.where(empty[..., x], pooled[..., x], 0.0)
+        mx = np.where(empty, np.nan, pooled / exposure)
+        variance = np.where(empty, 0.0, np.real(pooled) / exposure**2)
+    for x in range(1, mx.shape[-1]):
+        mx[..., x] = np.where(empty[..., x], mx[..., x - 1], mx[..., x])
+    joined = empty.copy()
+    joined[..., :-1] |= empty[..., 1:]
+    return Rates(mx, deaths, exposure, joined, variance)
+
+
+def given_rates(mx: Array, exposure: Array) -> Rates:
+    """Rates given outright, each group for itself; the deaths are those the exposure implies."""
+    with np.errstate(divide="ignore", invalid="ignore"):
+        variance = np.where(exposure == 0, 0.0, np.real(mx) / exposure)
+    joined = np.zeros(np.broadcast_shapes(mx.shape, exposure.shape), dtype=bool)
+    return Rates(mx, mx * exposure, exposure, joined, variance)
