@@ -1,6 +1,8 @@
 """The chain of stages that turns a panel into a life table, and its pullback to the raw rates."""
 
+from collections.abc import Callable
 from dataclasses import dataclass
+from typing import Protocol
 
 import numpy as np
 
@@ -43,6 +45,42 @@ class Chain:
         """Gradient in the raw mx of the panel's grid, exposure held, from partials by column."""
         g = pull_table(self.table, partials)
         return self.rates.pull(self.closed.pull(g.mx + self.separation.pull(g.ax)))
+
+
+class Reading(Protocol):
+    """A number read off a chain: what the methods here need of an indicator."""
+
+    @property
+    def label(self) -> str: ...
+
+    @property
+    def smooth(self) -> bool: ...
+
+    @property
+    def why_not_smooth(self) -> str: ...
+
+    @property
+    def value(self) -> Callable[[Chain], Array]:
+        """-> [...]"""
+
+    @property
+    def partials(self) -> Callable[[Chain], Partials | Array]:
+        """Derivatives by the table's columns; or, read off the rates, by `chain.rates.mx`."""
+
+
+def gradient(reading: Reading, chain: Chain) -> Array:
+    """d value / d raw mx, [..., age] on the panel's grid, exposure and infants' mix held.
+
+    Raises: ValueError where the number has no derivative, with the reason.
+    """
+    if not reading.smooth:
+        raise ValueError(
+            f"{reading.label} has no derivative by death rates: {reading.why_not_smooth}"
+        )
+    partials = reading.partials(chain)
+    if isinstance(partials, Partials):
+        return chain.pull(partials)
+    return chain.rates.pull(partials)
 
 
 def run(panel: Panel, settings: Settings, *, mx: Array | None = None) -> Chain:
