@@ -1,7 +1,8 @@
 """What the store hands out: frozen records, never database rows."""
 
 import datetime as dt
-from dataclasses import dataclass, field
+from collections.abc import Mapping
+from dataclasses import dataclass
 
 from engine.ages import AgeGrid, Array
 
@@ -73,6 +74,7 @@ class Edition:
     upload: int | None
     basis: Basis
     events: tuple[Event, ...] = ()
+    replaces: bool = False  # True: nothing of the base stayed
 
     @property
     def withdrawn(self) -> bool:
@@ -112,6 +114,7 @@ class Upload:
     reader: str  # version of the reader that made the report
     report: str  # JSON list of problems; empty before the first check
     edition: int | None  # number of the edition it became
+    base: int | None = None  # edition that stood at the check; 0: none, None: not checked
 
 
 @dataclass(frozen=True, slots=True)
@@ -120,11 +123,12 @@ class Change:
 
     collection: str
     base: int  # newest standing edition the checks ran against; 0: none
-    cells: dict[Key, Vector]  # of the upload, with totals of sexes and areas summed
+    cells: Mapping[Key, Vector]  # of the upload, with totals of sexes and areas summed
     areas: tuple[Area, ...]
     basis: Basis
     upload: int | None = None
     replace: bool = False  # True: nothing of the base stays
+    ended: frozenset[Key] = frozenset()  # totals of the base that no longer can be summed
 
 
 @dataclass(frozen=True, slots=True)
@@ -135,4 +139,4 @@ class Selection:
     sexes: tuple[str, ...] | None = None
     periods: tuple[str, ...] | None = None
     measures: tuple[str, ...] | None = None
-    cause: str = field(default="")
+    cause: str | None = ""  # empty: the deaths of all causes

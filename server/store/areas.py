@@ -1,0 +1,64 @@
+"""Areas: their tree is content of an edition, their names are presentation."""
+
+from collections.abc import Iterable
+
+from sqlalchemy import and_, func, select
+from sqlalchemy.orm import Session
+
+from server.store import collections
+from server.store.errors import Refused
+from server.store.records import Area
+from server.store.tables import AreaName, AreaRange
+
+
+def listing(session: Session, collection: str, number: int) -> tuple[Area, ...]:
+    """Areas of an edition, each before its parts, siblings by code. One statement.
+
+    An area without a name is called by its code.
+    """
+    rows = session.execute(
+        select(
+            AreaRange.code,
+            func.coalesce(AreaName.name, AreaRange.code),
+            AreaRange.parent,
+            AreaRange.delivered,
+        )
+        .outerjoin(
+            AreaName,
+            and_(
+                AreaName.collection_id == AreaRange.collection_id, AreaName.code == AreaRange.code
+            ),
+        )
+        .where(AreaRange.collection_id == collections.id_of(collection), AreaRange.holds_in(number))
+    ).all()
+    return in_tree_order(Area(*row) for row in rows)
+
+
+def in_tree_order(areas: Iterable[Area]) -> tuple[Area, ...]:
+    """Each area before its parts, siblings by code.
+
+    Raises: Refused where a parent is not among them, or an area lies inside itself.
+    """
+    by_code = {area.code: area for area in areas}
+    parts: dict[str, list[Area]] = {}
+    for area in sorted(by_code.values(), key=lambda area: area.code, reverse=True):
+        if area.parent and area.parent not in by_code:
+            raise Refused(
+                "Area {area} is said to be part of {parent}, which is not among the areas. "
+                "Add {parent}, or leave the parent of {area} empty.",
+                area=area.code,
+                parent=area.parent,
+            )
+        parts.setdefault(area.parent, []).append(area)
+    ordered, waiting = [], parts.pop("", [])
+    while waiting:
+        area = waiting.pop()
+        ordered.append(area)
+        waiting.extend(parts.pop(area.code, []))
+    if parts:
+        inside = sorted(part.code for several in parts.values() for part in several)
+        raise Refused(
+            "Areas {areas} lie inside themselves. Correct their parents so that they form a tree.",
+            areas=", ".join(inside),
+        )
+    return tuple(ordered)

@@ -1,0 +1,66 @@
+"""Engines, sessions and the one way to write: `transaction`."""
+
+import sqlite3
+from collections.abc import Iterator
+from contextlib import contextmanager
+from pathlib import Path
+
+from sqlalchemy import Connection, Engine, create_engine, event, make_url
+from sqlalchemy.orm import Session, sessionmaker
+
+__all__ = ["Engine", "Session", "make_engine", "sessions", "transaction"]
+
+
+def make_engine(url: str, *, migrating: bool = False) -> Engine:
+    """An engine for SQLite or PostgreSQL. `migrating` leaves SQLite's foreign keys unenforced,
+    since changing a table there means making it anew."""
+    if url.startswith("postgresql:"):
+        url = url.replace("postgresql:", "postgresql+psycopg:", 1)
+    address = make_url(url)
+    if address.get_backend_name() != "sqlite":
+        return create_engine(address, pool_pre_ping=True)
+    if address.database:
+        Path(address.database).parent.mkdir(parents=True, exist_ok=True)
+    engine = create_engine(address)
+    _prepare_sqlite(engine, foreign_keys=not migrating)
+    return engine
+
+
+def sessions(engine: Engine) -> sessionmaker[Session]:
+    return sessionmaker(engine, expire_on_commit=False)
+
+
+@contextmanager
+def transaction(session: Session) -> Iterator[None]:
+    """Write inside it: committed at its end, rolled back on an exception.
+
+    What the session has read so far is let go first: a reading transaction of SQLite that turns
+    to writing may fail at once, whatever the timeout; this one takes the write lock as it begins.
+    """
+    session.rollback()
+    session.connection(execution_options={"sqlite_begin": "IMMEDIATE"})
+    try:
+        yield
+    except BaseException:
+        session.rollback()
+        raise
+    session.commit()
+
+
+def _prepare_sqlite(engine: Engine, *, foreign_keys: bool) -> None:
+    @event.listens_for(engine, "connect")
+    def on_connect(connection: sqlite3.Connection, _record: object) -> None:
+        connection.isolation_level = None  # sqlite3 must not begin transactions itself
+        for pragma in (
+            "journal_mode=WAL",
+            "synchronous=FULL",  # NORMAL may lose the last commit when the power goes
+            "busy_timeout=30000",
+            "journal_size_limit=67108864",
+            f"foreign_keys={'ON' if foreign_keys else 'OFF'}",
+        ):
+            connection.execute(f"PRAGMA {pragma}")
+
+    @event.listens_for(engine, "begin")
+    def on_begin(connection: Connection) -> None:
+        mode = connection.get_execution_options().get("sqlite_begin", "DEFERRED")
+        connection.exec_driver_sql(f"BEGIN {mode}")

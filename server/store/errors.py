@@ -1,0 +1,55 @@
+"""What the store refuses, as catalogue text and the values that fill it.
+
+`text` is the English catalogue text with {names}, `values` fills them: whoever shows the refusal
+passes both through the catalogue (`_(error.text, **error.values)`); `str(error)` is the English.
+"""
+
+from collections.abc import Iterable
+
+
+class Refused(Exception):
+    """The question or the change cannot be had as it stands; says why and what to do."""
+
+    def __init__(self, text: str, **values: object) -> None:
+        self.text = text
+        self.values = values
+        super().__init__(text.format(**values) if values else text)
+
+
+class Missing(Refused):
+    """Nothing of this kind has this code. `known` lists those there are."""
+
+    def __init__(self, kind: str, code: object, known: Iterable[object] = ()) -> None:
+        self.kind, self.code = kind, str(code)
+        self.known = tuple(str(one) for one in known)
+        if self.known:
+            text = "There is no {kind} {code}; known: {known}."
+        else:
+            text = "There is no {kind} {code}, nor any other yet."
+        super().__init__(text, kind=kind, code=self.code, known=", ".join(self.known))
+
+
+class Stale(Refused):
+    """Another edition stands than the one the checks ran against."""
+
+    def __init__(self, checked: int, standing: int) -> None:
+        self.checked, self.standing = checked, standing
+        super().__init__(
+            "The checks ran against {checked}, but {standing} stands now. "
+            "Check the upload again, then commit it.",
+            checked=_named(checked),
+            standing=_named(standing),
+        )
+
+
+class Taken(Refused):
+    """The code is in use."""
+
+    def __init__(self, kind: str, code: str) -> None:
+        super().__init__(
+            "There is a {kind} {code} already. Choose another code.", kind=kind, code=code
+        )
+
+
+def _named(number: int) -> str:
+    return f"edition {number}" if number else "no edition"

@@ -1,0 +1,52 @@
+"""What stands over every pinned page, and all that an unchanged page must know: one statement."""
+
+from dataclasses import dataclass
+
+from sqlalchemy import and_, select
+from sqlalchemy.orm import Session
+
+from server.store import collections, editions
+from server.store.errors import Missing
+from server.store.records import Collection as CollectionRecord
+from server.store.records import Edition as EditionRecord
+from server.store.tables import BasisRange, Collection, Edition, EditionEvent
+
+
+@dataclass(frozen=True, slots=True)
+class Heading:
+    collection: CollectionRecord
+    edition: EditionRecord
+    newest: int | None  # number of the newest standing edition; None: all are withdrawn
+
+
+def heading(session: Session, collection_code: str, number: int) -> Heading:
+    """Collection, edition with its events, and the newest standing number. One statement.
+
+    Raises: Missing, for the collection or the edition, with those there are.
+    """
+    rows = session.execute(
+        select(
+            Collection.id.label("collection_id"),
+            Collection.code,
+            Collection.name,
+            Collection.owner,
+            Collection.revision,
+            editions.standing_number(Collection.id).label("newest"),
+            *editions.COLUMNS,
+        )
+        .outerjoin(Edition, and_(Edition.collection_id == Collection.id, Edition.number == number))
+        .outerjoin(BasisRange, editions.ITS_BASIS)
+        .outerjoin(EditionEvent, editions.ITS_EVENTS)
+        .where(Collection.code == collection_code)
+    ).all()
+    if not rows:
+        collections.find(session, collection_code)  # raises, with the codes there are
+    row = rows[0]
+    if row.number is None:
+        known = [one.number for one in editions.listing(session, collection_code)]
+        raise Missing("edition", number, known)
+    return Heading(
+        CollectionRecord(row.collection_id, row.code, row.name, row.owner, row.revision),
+        editions.of_rows(rows)[0],
+        row.newest,
+    )

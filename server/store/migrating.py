@@ -1,0 +1,34 @@
+"""Bringing a database to the newest schema, and telling where it is."""
+
+from typing import Literal
+
+from alembic import command
+from alembic.config import Config
+from alembic.runtime.migration import MigrationContext
+from alembic.script import ScriptDirectory
+from sqlalchemy import Engine
+
+from server.paths import folder
+
+
+def migrate(url: str) -> None:
+    """Bring the database to the newest schema; an empty one is filled."""
+    command.upgrade(configuration(url), "head")
+
+
+def schema_state(engine: Engine) -> Literal["head", "behind", "empty"]:
+    """Where the schema stands. One from a newer program counts as 'behind': it is not served."""
+    with engine.connect() as connection:
+        at = MigrationContext.configure(connection).get_current_revision()
+    if at is None:
+        return "empty"
+    head = ScriptDirectory.from_config(configuration("")).get_current_head()
+    return "head" if at == head else "behind"
+
+
+def configuration(url: str) -> Config:
+    """Alembic's settings for this database, without a file."""
+    settings = Config()
+    settings.set_main_option("script_location", str(folder("migrations")).replace("%", "%%"))
+    settings.attributes["url"] = url
+    return settings

@@ -1,0 +1,111 @@
+"""Content that holds over a range of editions: one row for as long as nothing changes.
+
+What a new edition holds is decided by the newest *standing* edition and the upload. The rows to
+close and to add follow from the *highest number*, standing or not: its rows are the ones whose
+range is still open. Taking the difference from the standing edition instead breaks older editions
+as soon as one was withdrawn.
+"""
+
+from collections.abc import Collection, Iterable, Iterator, Mapping, Sequence
+from dataclasses import dataclass
+from itertools import islice
+from typing import Any
+
+from sqlalchemy import func, insert, literal, select, update
+from sqlalchemy.orm import Session
+
+from server.store.tables import AreaRange, BasisRange, Edition, Schedule
+
+STEP = 5000  # rows a statement: databases limit the values one statement may carry
+RowKey = tuple[str, ...]
+Content = type[Schedule] | type[AreaRange] | type[BasisRange]
+
+
+@dataclass(frozen=True, slots=True)
+class Difference:
+    """What turns the rows of the highest number into those of the next one."""
+
+    close: tuple[int, ...]  # ids of rows that hold no longer
+    again: tuple[int, ...]  # ids of rows of the base, no longer open, that hold again
+    add: frozenset[RowKey]  # keys of what was handed in and is new
+    digests: tuple[bytes, ...]  # of everything that holds
+
+
+def highest(session: Session, collection_id: int) -> int:
+    """The highest edition number of the collection, standing or not; 0 where there is none."""
+    number = session.scalar(
+        select(func.max(Edition.number)).where(Edition.collection_id == collection_id)
+    )
+    return number or 0
+
+
+def difference(
+    session: Session,
+    table: Content,
+    collection_id: int,
+    *,
+    base: int,
+    against: int,
+    handed: Mapping[RowKey, bytes],
+    ended: Collection[RowKey] = (),
+    replace: bool = False,
+) -> Difference:
+    """How the next edition's rows differ from those of edition `against`, the highest number.
+
+    `handed` (key -> digest) is laid over edition `base`, or stands alone with `replace`; `ended`
+    are keys of the base that are dropped. At most two statements.
+    """
+    open_rows = _rows(session, table, collection_id, against)
+    base_rows = open_rows if base == against else _rows(session, table, collection_id, base)
+    kept = {} if replace else {key: row for key, row in base_rows.items() if key not in ended}
+    wanted = {key: digest for key, (_, digest) in kept.items()} | dict(handed)
+    same = {key for key, (_, digest) in open_rows.items() if wanted.get(key) == digest}
+    return Difference(
+        close=tuple(id_ for key, (id_, _) in open_rows.items() if key not in same),
+        again=tuple(id_ for key, (id_, _) in kept.items() if key not in same and key not in handed),
+        add=frozenset(key for key in handed if key not in same),
+        digests=tuple(wanted.values()),
+    )
+
+
+def apply(
+    session: Session,
+    table: Content,
+    collection_id: int,
+    part: Difference,
+    number: int,
+    added: Iterable[Mapping[str, Any]],
+) -> None:
+    """Write the difference as edition `number`; `added` are the full rows of `part.add`."""
+    for ids in _steps(part.close):
+        session.execute(update(table).where(table.id.in_(ids)).values(until=number))
+    columns = [
+        column for column in table.__table__.c if column.name not in {"id", "first", "until"}
+    ]
+    names = [*(column.name for column in columns), "first"]
+    for ids in _steps(part.again):
+        copies = select(*columns, literal(number)).where(table.id.in_(ids))
+        session.execute(insert(table).from_select(names, copies))
+    own = {"collection_id": collection_id, "first": number}
+    for rows in _steps(added):
+        session.execute(insert(table), [{**row, **own} for row in rows])
+
+
+def _rows(
+    session: Session, table: Content, collection_id: int, number: int
+) -> dict[RowKey, tuple[int, bytes]]:
+    """Key -> (id, digest) of everything that holds in an edition."""
+    if not number:
+        return {}
+    rows = session.execute(
+        select(*(getattr(table, name) for name in table.KEY), table.id, table.digest).where(
+            table.collection_id == collection_id, table.holds_in(number)
+        )
+    )
+    return {tuple(row[:-2]): (row[-2], row[-1]) for row in rows}
+
+
+def _steps(items: Iterable[Any]) -> Iterator[Sequence[Any]]:
+    rest = iter(items)
+    while step := list(islice(rest, STEP)):
+        yield step

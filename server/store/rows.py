@@ -1,0 +1,96 @@
+"""From records to rows of the content tables."""
+
+import datetime as dt
+import re
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import asdict
+from typing import Any
+
+from sqlalchemy import insert, select, update
+from sqlalchemy.dialects import postgresql, sqlite
+from sqlalchemy.orm import Session
+
+from server.store import digests
+from server.store.ranges import RowKey
+from server.store.records import Area, Change, Key
+from server.store.tables import AreaName, Grid, Schedule
+
+Rows = Iterator[Mapping[str, Any]]
+
+
+def of(key: Key) -> RowKey:
+    """The key in the order of the table's own."""
+    return tuple(getattr(key, name) for name in Schedule.KEY)
+
+
+def schedules(session: Session, wanted: frozenset[RowKey], change: Change) -> Rows:
+    cells = {key: cell for key, cell in change.cells.items() if of(key) in wanted}
+    grids = _grids(session, {cell.grid.code for cell in cells.values()})
+    for key, cell in cells.items():
+        yield {
+            **asdict(key),
+            "period_start": start_of(key.period),
+            "status": cell.status,
+            "grid_id": grids[cell.grid.code],
+            "vector": digests.canonical(cell.values).tobytes(),
+            "digest": digests.of_schedule(key, cell),
+        }
+
+
+def areas(wanted: frozenset[RowKey], change: Change) -> Rows:
+    for area in change.areas:
+        if (area.code,) in wanted:
+            yield {
+                "code": area.code,
+                "parent": area.parent,
+                "delivered": area.delivered,
+                "digest": digests.of_area(area),
+            }
+
+
+def basis(wanted: frozenset[RowKey], change: Change) -> Rows:
+    if () in wanted:
+        yield {**asdict(change.basis), "digest": digests.of_basis(change.basis)}
+
+
+def name_areas(session: Session, collection_id: int, named: Sequence[Area]) -> None:
+    """Keep the names given; an area without one keeps the name it has."""
+    of_collection = AreaName.collection_id == collection_id
+    known = {
+        row.code: row.name
+        for row in session.execute(select(AreaName.code, AreaName.name).where(of_collection))
+    }
+    for area in named:
+        if not area.name or known.get(area.code) == area.name:
+            continue
+        if area.code in known:
+            changed = update(AreaName).where(of_collection, AreaName.code == area.code)
+            session.execute(changed.values(name=area.name))
+        else:
+            row = {"collection_id": collection_id, "code": area.code, "name": area.name}
+            session.execute(insert(AreaName).values(row))
+
+
+def start_of(period: str) -> dt.date:
+    """First day of a period. Raises: ValueError for what is no ISO 8601 year, '2014'.
+
+    >>> start_of("2014")
+    datetime.date(2014, 1, 1)
+    """
+    if not re.fullmatch("[0-9]{4}", period) or period == "0000":
+        raise ValueError(f"period {period!r} is no year of four digits, as in '2014'")
+    return dt.date(int(period), 1, 1)
+
+
+def _grids(session: Session, codes: set[str]) -> dict[str, int]:
+    """Ids of these grids; new ones are added, unless another collection's commit is quicker."""
+    new: dict[str, Any] = {"sqlite": sqlite.insert, "postgresql": postgresql.insert}
+
+    def known() -> dict[str, int]:
+        found = session.execute(select(Grid.starts, Grid.id).where(Grid.starts.in_(codes)))
+        return {row.starts: row.id for row in found}
+
+    if missing := sorted(codes - known().keys()):
+        adding = new[session.get_bind().dialect.name](Grid).on_conflict_do_nothing()
+        session.execute(adding, [{"starts": code} for code in missing])
+    return known()

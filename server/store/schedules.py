@@ -1,0 +1,104 @@
+"""Schedules: vectors over age, read in one statement however many."""
+
+from dataclasses import dataclass
+from functools import lru_cache
+from typing import Any
+
+import numpy as np
+from sqlalchemy import func, select
+from sqlalchemy.orm import Session
+from sqlalchemy.sql import ColumnElement
+
+from engine.ages import AgeGrid, Array
+from server.store import collections
+from server.store.records import Key, Selection, Vector
+from server.store.tables import Grid, Schedule
+
+ALL = Selection()
+
+
+@dataclass(frozen=True, slots=True)
+class Contents:
+    """What there is in an edition; codes in code-point order."""
+
+    areas: tuple[str, ...]
+    sexes: tuple[str, ...]
+    periods: tuple[str, ...]
+    measures: tuple[str, ...]
+    status: dict[tuple[str, str, str], str]  # (area, sex, period): provisional if any measure is
+
+
+def load(
+    session: Session, collection: str, number: int, selection: Selection = ALL
+) -> dict[Key, Vector]:
+    """The selected schedules of an edition, in the order of their keys. One statement.
+
+    What there is not is left out: the caller knows what it asked for.
+    """
+    rows = session.execute(
+        select(
+            Schedule.area,
+            Schedule.sex,
+            Schedule.period,
+            Schedule.measure,
+            Schedule.cause,
+            Schedule.status,
+            Grid.starts,
+            Schedule.vector,
+        )
+        .join(Grid, Grid.id == Schedule.grid_id)
+        .where(
+            Schedule.collection_id == collections.id_of(collection),
+            Schedule.holds_in(number),
+            *_chosen(selection),
+        )
+    ).all()
+    return {
+        Key(*row[:5]): Vector(row.status, _grid(row.starts), unpacked(row.vector))
+        for row in sorted(rows, key=lambda row: row[:5])
+    }
+
+
+def contents(session: Session, collection: str, number: int) -> Contents:
+    """What an edition holds, without the numbers. One statement."""
+    rows = session.execute(
+        select(
+            Schedule.area,
+            Schedule.sex,
+            Schedule.period,
+            Schedule.measure,
+            func.max(Schedule.status).label("status"),  # 'provisional' comes after 'final'
+        )
+        .where(Schedule.collection_id == collections.id_of(collection), Schedule.holds_in(number))
+        .group_by(Schedule.area, Schedule.sex, Schedule.period, Schedule.measure)
+    ).all()
+    status: dict[tuple[str, str, str], str] = {}
+    for row in sorted(rows, key=lambda row: row[:4]):
+        where = (row.area, row.sex, row.period)
+        status[where] = max(row.status, status.get(where, row.status))
+    return Contents(
+        areas=tuple(sorted({row.area for row in rows})),
+        sexes=tuple(sorted({row.sex for row in rows})),
+        periods=tuple(sorted({row.period for row in rows})),
+        measures=tuple(sorted({row.measure for row in rows})),
+        status=status,
+    )
+
+
+def unpacked(vector: bytes) -> Array:
+    """The numbers of a stored vector, [age]; not to be written to."""
+    return np.frombuffer(vector, "<f8").astype(np.float64, copy=False)
+
+
+def _chosen(selection: Selection) -> list[ColumnElement[bool]]:
+    wanted: tuple[tuple[Any, tuple[str, ...] | None], ...] = (
+        (Schedule.area, selection.areas),
+        (Schedule.sex, selection.sexes),
+        (Schedule.period, selection.periods),
+        (Schedule.measure, selection.measures),
+        (Schedule.cause, None if selection.cause is None else (selection.cause,)),
+    )
+    return [column.in_(codes) for column, codes in wanted if codes is not None]
+
+
+_grid = lru_cache(maxsize=256)(AgeGrid.parse)

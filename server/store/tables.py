@@ -1,0 +1,280 @@
+"""The tables. Only query files of the store see these rows; what leaves is a record or an array."""
+
+import datetime as dt
+from typing import ClassVar
+
+from sqlalchemy import (
+    Boolean,
+    CheckConstraint,
+    Date,
+    DateTime,
+    ForeignKey,
+    ForeignKeyConstraint,
+    Index,
+    LargeBinary,
+    MetaData,
+    String,
+    Text,
+    UniqueConstraint,
+    and_,
+    or_,
+    text,
+)
+from sqlalchemy.engine import Dialect
+from sqlalchemy.ext.compiler import compiles
+from sqlalchemy.orm import DeclarativeBase, Mapped, mapped_column
+from sqlalchemy.sql import ColumnElement, SQLColumnExpression
+from sqlalchemy.types import TypeDecorator
+
+# SQLite's STRICT tables take only INT, INTEGER, REAL, TEXT, BLOB and ANY as types of a column
+_STRICT = {String: "TEXT", Text: "TEXT", Date: "TEXT", DateTime: "TEXT", Boolean: "INTEGER"}
+for _type, _name in _STRICT.items():
+    compiles(_type, "sqlite")(lambda _element, _compiler, _name=_name, **_kw: _name)
+
+# every constraint has a name, so that a later migration can drop it on either database
+NAMES = {
+    "ix": "ix_%(column_0_label)s",
+    "uq": "uq_%(table_name)s_%(column_0_name)s",
+    "ck": "ck_%(table_name)s_%(constraint_name)s",
+    "fk": "fk_%(table_name)s_%(column_0_name)s_%(referred_table_name)s",
+    "pk": "pk_%(table_name)s",
+}
+
+
+class Utc(TypeDecorator[dt.datetime]):
+    """A moment in UTC, aware on both databases (SQLite forgets the zone). Refuses a naive one."""
+
+    impl = DateTime(timezone=True)
+    cache_ok = True
+
+    def process_bind_param(self, value: dt.datetime | None, dialect: Dialect) -> dt.datetime | None:
+        if value is not None and value.tzinfo is None:
+            raise ValueError(f"{value} has no time zone; give a moment in UTC")
+        return value.astimezone(dt.UTC) if value else None
+
+    def process_result_value(
+        self, value: dt.datetime | None, dialect: Dialect
+    ) -> dt.datetime | None:
+        if value is None:
+            return None
+        return value.astimezone(dt.UTC) if value.tzinfo else value.replace(tzinfo=dt.UTC)
+
+
+class Base(DeclarativeBase):
+    metadata = MetaData(naming_convention=NAMES)
+    type_annotation_map: ClassVar = {dt.datetime: Utc()}
+
+
+class Collection(Base):
+    __tablename__ = "collection"
+    __table_args__ = {"sqlite_strict": True}
+
+    id: Mapped[int] = mapped_column(primary_key=True)
+    code: Mapped[str] = mapped_column(String(32), unique=True)
+    name: Mapped[str]
+    owner: Mapped[str]
+    revision: Mapped[int]
+    made: Mapped[dt.datetime]
+
+
+class Upload(Base):
+    """A draft until an edition names it."""
+
+    __tablename__ = "upload"
+    # autoincrement: the number of an erased draft is not given to another
+    __table_args__ = {"sqlite_strict": True, "sqlite_autoincrement": True}
+
+    id: Mapped[int] = mapped_column(primary_key=True)
+    collection_id: Mapped[int] = mapped_column(ForeignKey("collection.id"), index=True)
+    received: Mapped[dt.datetime]
+    by: Mapped[str]
+    basis: Mapped[str | None] = mapped_column(Text)  # JSON
+    reader: Mapped[str]
+    report: Mapped[str] = mapped_column(Text)
+    base: Mapped[int | None]
+
+
+class UploadFile(Base):
+    __tablename__ = "upload_file"
+    __table_args__ = {"sqlite_strict": True}
+
+    upload_id: Mapped[int] = mapped_column(
+        ForeignKey("upload.id", ondelete="CASCADE"), primary_key=True
+    )
+    role: Mapped[str] = mapped_column(primary_key=True)
+    name: Mapped[str]
+    size: Mapped[int]
+    sha256: Mapped[str] = mapped_column(String(64))
+    mapping: Mapped[str] = mapped_column(Text)
+    content: Mapped[bytes] = mapped_column(LargeBinary)
+
+
+class Edition(Base):
+    """One immutable state. The row is never updated; what befalls it later is an EditionEvent."""
+
+    __tablename__ = "edition"
+    __table_args__ = (
+        CheckConstraint("number > base", name="follows_its_base"),
+        {"sqlite_strict": True},
+    )
+
+    collection_id: Mapped[int] = mapped_column(ForeignKey("collection.id"), primary_key=True)
+    number: Mapped[int] = mapped_column(primary_key=True, autoincrement=False)
+    base: Mapped[int]
+    replaces: Mapped[bool]
+    made: Mapped[dt.datetime]
+    by: Mapped[str]
+    note: Mapped[str] = mapped_column(Text)
+    digest: Mapped[str] = mapped_column(String(64))
+    upload_id: Mapped[int | None] = mapped_column(ForeignKey("upload.id"), unique=True)
+
+
+class EditionEvent(Base):
+    __tablename__ = "edition_event"
+    __table_args__ = (
+        ForeignKeyConstraint(
+            ["collection_id", "number"], ["edition.collection_id", "edition.number"]
+        ),
+        CheckConstraint("what IN ('withdrawn', 'reinstated')", name="what"),
+        Index("ix_edition_event_of_edition", "collection_id", "number", "id"),
+        {"sqlite_strict": True},
+    )
+
+    id: Mapped[int] = mapped_column(primary_key=True)
+    collection_id: Mapped[int]
+    number: Mapped[int]
+    what: Mapped[str]
+    at: Mapped[dt.datetime]
+    by: Mapped[str]
+    note: Mapped[str] = mapped_column(Text)
+
+
+class Grid(Base):
+    """Age groups, addressed by their starts: '0,1,5,10'."""
+
+    __tablename__ = "grid"
+    __table_args__ = {"sqlite_strict": True}
+
+    id: Mapped[int] = mapped_column(primary_key=True)
+    starts: Mapped[str] = mapped_column(Text, unique=True)
+
+
+class Ranged:
+    """Content that holds in the editions `first` up to, but not with, `until` (none: still)."""
+
+    KEY: ClassVar[tuple[str, ...]]  # the columns of which one row at a time holds
+
+    id: Mapped[int] = mapped_column(primary_key=True)
+    collection_id: Mapped[int] = mapped_column(ForeignKey("collection.id"))
+    digest: Mapped[bytes] = mapped_column(LargeBinary)
+    first: Mapped[int]
+    until: Mapped[int | None]
+
+    @classmethod
+    def holds_in(cls, number: int | SQLColumnExpression[int]) -> ColumnElement[bool]:
+        return and_(cls.first <= number, or_(cls.until.is_(None), cls.until > number))
+
+
+def _ranged(name: str, *key: str) -> tuple[CheckConstraint | Index, ...]:
+    """What every ranged table keeps: no empty range, one open row of a key, a path to read by."""
+    still = text("until IS NULL")
+    return (
+        CheckConstraint("until IS NULL OR until > first", name="range"),
+        Index(
+            f"uq_{name}_holding",
+            "collection_id",
+            *key,
+            unique=True,
+            sqlite_where=still,
+            postgresql_where=still,
+        ),
+        Index(f"ix_{name}_by_key", "collection_id", *key, "first", "until"),
+    )
+
+
+_SCHEDULE_KEY = ("area", "sex", "period", "measure", "cause")
+
+
+class Schedule(Ranged, Base):
+    """One vector over age, packed '<f8'."""
+
+    __tablename__ = "schedule"
+    __table_args__ = (
+        *_ranged("schedule", *_SCHEDULE_KEY),
+        CheckConstraint("length(vector) % 8 = 0", name="whole_numbers_of_8_bytes"),
+        CheckConstraint("sex IN ('f', 'm', 'p')", name="sex"),
+        CheckConstraint("status IN ('final', 'provisional')", name="status"),
+        {"sqlite_strict": True},
+    )
+    KEY: ClassVar = _SCHEDULE_KEY
+
+    area: Mapped[str] = mapped_column(String(32))
+    sex: Mapped[str] = mapped_column(String(1))
+    period: Mapped[str] = mapped_column(String(32))
+    period_start: Mapped[dt.date]
+    measure: Mapped[str] = mapped_column(String(32))
+    cause: Mapped[str] = mapped_column(String(32))
+    status: Mapped[str] = mapped_column(String(16))
+    grid_id: Mapped[int] = mapped_column(ForeignKey("grid.id"))
+    vector: Mapped[bytes] = mapped_column(LargeBinary)
+
+
+class AreaRange(Ranged, Base):
+    """Place of an area in the tree. Its name is presentation and stands in area_name."""
+
+    __tablename__ = "area"
+    __table_args__ = (*_ranged("area", "code"), {"sqlite_strict": True})
+    KEY: ClassVar = ("code",)
+
+    code: Mapped[str] = mapped_column(String(32))
+    parent: Mapped[str] = mapped_column(String(32))
+    delivered: Mapped[bool]
+
+
+class AreaName(Base):
+    __tablename__ = "area_name"
+    __table_args__ = (UniqueConstraint("collection_id", "code"), {"sqlite_strict": True})
+
+    id: Mapped[int] = mapped_column(primary_key=True)
+    collection_id: Mapped[int] = mapped_column(ForeignKey("collection.id"))
+    code: Mapped[str] = mapped_column(String(32))
+    name: Mapped[str]
+
+
+class BasisRange(Ranged, Base):
+    """How the counts were made; one row holds in each edition."""
+
+    __tablename__ = "basis"
+    __table_args__ = (*_ranged("basis"), {"sqlite_strict": True})
+    KEY: ClassVar = ()
+
+    people: Mapped[str]
+    dated_by: Mapped[str]
+    population: Mapped[str]
+    population_date: Mapped[str]
+    source: Mapped[str]
+
+
+class Job(Base):
+    __tablename__ = "job"
+    __table_args__ = (
+        CheckConstraint(
+            "state IN ('queued', 'running', 'done', 'failed', 'cancelled')", name="state"
+        ),
+        Index("ix_job_by_state", "state", "id"),
+        {"sqlite_strict": True, "sqlite_autoincrement": True},
+    )
+
+    id: Mapped[int] = mapped_column(primary_key=True)
+    kind: Mapped[str]
+    params: Mapped[str] = mapped_column(Text)  # JSON, keys sorted
+    digest: Mapped[str] = mapped_column(String(64))  # of kind and params: same request, same digest
+    state: Mapped[str]
+    done: Mapped[int]
+    total: Mapped[int]
+    message: Mapped[str] = mapped_column(Text)
+    attempt: Mapped[int]  # a worker writes only under the attempt it claimed
+    beat: Mapped[int]  # a counter, judged by the watcher's own clock
+    queued: Mapped[dt.datetime]
+    started: Mapped[dt.datetime | None]
+    ended: Mapped[dt.datetime | None]

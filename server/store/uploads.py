@@ -1,0 +1,177 @@
+"""Uploads: files kept byte for byte, their mapping and their checking report."""
+
+import datetime as dt
+import hashlib
+import json
+from collections.abc import Mapping, Sequence
+from dataclasses import asdict
+
+from sqlalchemy import delete, insert, select, update
+from sqlalchemy.orm import Session
+from sqlalchemy.sql import ColumnElement
+
+from server.store import collections
+from server.store.errors import Missing, Refused
+from server.store.records import Basis, Upload, UploadFile
+from server.store.tables import Collection, Edition
+from server.store.tables import Upload as UploadRow
+from server.store.tables import UploadFile as FileRow
+
+
+def receive(
+    session: Session,
+    *,
+    collection: str,
+    files: Sequence[tuple[str, str, bytes]],
+    by: str,
+    at: dt.datetime,
+) -> Upload:
+    """Keep the files, each (role, name, content). Raises: Missing for the collection; ValueError
+    where a role comes twice or there is no file."""
+    roles = [role for role, _, _ in files]
+    if not roles or len(set(roles)) != len(roles):
+        raise ValueError(f"an upload has one file of each role, at least one; found {roles}")
+    row = {
+        "collection_id": collections.find(session, collection).id,
+        "received": at,
+        "by": by,
+        "reader": "",
+        "report": "",
+    }
+    upload_id = session.execute(insert(UploadRow).values(row).returning(UploadRow.id)).scalar_one()
+    for role, name, content in files:
+        session.execute(
+            insert(FileRow).values(
+                upload_id=upload_id,
+                role=role,
+                name=name,
+                size=len(content),
+                sha256=hashlib.sha256(content).hexdigest(),
+                mapping="",
+                content=content,
+            )
+        )
+    return find(session, upload_id)
+
+
+def find(session: Session, upload_id: int) -> Upload:
+    """Raises: Missing."""
+    found = _read(session, UploadRow.id == upload_id)
+    if not found:
+        raise Missing("upload", upload_id)
+    return found[0]
+
+
+def listing(session: Session, collection: str) -> tuple[Upload, ...]:
+    """Uploads of a collection, newest first; their contents are not read."""
+    return _read(session, UploadRow.collection_id == collections.id_of(collection))
+
+
+def file_bytes(session: Session, upload_id: int, role: str) -> bytes:
+    """The file as handed in. Raises: Missing, with the roles there are."""
+    content = session.execute(
+        select(FileRow.content).where(FileRow.upload_id == upload_id, FileRow.role == role)
+    ).scalar_one_or_none()
+    if content is None:
+        known = [file.role for file in find(session, upload_id).files]
+        raise Missing("file", role, known)
+    return content
+
+
+def set_mapping(
+    session: Session, upload_id: int, *, mappings: Mapping[str, str], basis: Basis
+) -> Upload:
+    """How to read each file (role -> JSON of the mapping), and the basis. The report of an earlier
+    reading is dropped. Raises: Missing; Refused for an upload that has become an edition."""
+    upload = _draft(session, upload_id)
+    for role, mapping in mappings.items():
+        if role not in {file.role for file in upload.files}:
+            raise Missing("file", role, [file.role for file in upload.files])
+        session.execute(
+            update(FileRow)
+            .where(FileRow.upload_id == upload_id, FileRow.role == role)
+            .values(mapping=mapping)
+        )
+    said = json.dumps(asdict(basis), ensure_ascii=False)
+    _set(session, upload_id, basis=said, report="", reader="", base=None)
+    return find(session, upload_id)
+
+
+def set_report(session: Session, upload_id: int, *, report: str, reader: str, base: int) -> Upload:
+    """What the checks found (JSON), the version of the reader, and the number of the edition that
+    stood then (0: none). Raises: Missing; Refused for an upload that has become an edition."""
+    _draft(session, upload_id)
+    _set(session, upload_id, report=report, reader=reader, base=base)
+    return find(session, upload_id)
+
+
+def erase(session: Session, upload_id: int) -> None:
+    """Throw a draft away, files and all. Raises: Missing; Refused for one that has become an
+    edition."""
+    _draft(session, upload_id)
+    session.execute(delete(FileRow).where(FileRow.upload_id == upload_id))
+    session.execute(delete(UploadRow).where(UploadRow.id == upload_id))
+
+
+def _draft(session: Session, upload_id: int) -> Upload:
+    upload = find(session, upload_id)
+    if upload.edition is not None:
+        raise Refused(
+            "Upload {upload} has become edition {edition} and stays as it is. "
+            "Hand the corrected file in as a new upload.",
+            upload=upload_id,
+            edition=upload.edition,
+        )
+    return upload
+
+
+def _set(session: Session, upload_id: int, **values: object) -> None:
+    session.execute(update(UploadRow).where(UploadRow.id == upload_id).values(values))
+
+
+def _read(session: Session, which: ColumnElement[bool]) -> tuple[Upload, ...]:
+    """Uploads with their files, newest first. Two statements."""
+    rows = session.execute(
+        select(
+            UploadRow.id,
+            Collection.code,
+            UploadRow.received,
+            UploadRow.by,
+            UploadRow.basis,
+            UploadRow.reader,
+            UploadRow.report,
+            UploadRow.base,
+            Edition.number,
+        )
+        .join(Collection, Collection.id == UploadRow.collection_id)
+        .outerjoin(Edition, Edition.upload_id == UploadRow.id)
+        .where(which)
+        .order_by(UploadRow.id.desc())
+    ).all()
+    files: dict[int, list[UploadFile]] = {row.id: [] for row in rows}
+    for file in session.execute(
+        select(
+            FileRow.upload_id,
+            FileRow.role,
+            FileRow.name,
+            FileRow.size,
+            FileRow.sha256,
+            FileRow.mapping,
+        ).where(FileRow.upload_id.in_(files))
+    ):
+        files[file.upload_id].append(UploadFile(*file[1:]))
+    return tuple(
+        Upload(
+            id=row.id,
+            collection=row.code,
+            received=row.received,
+            by=row.by,
+            files=tuple(sorted(files[row.id], key=lambda file: file.role)),
+            basis=None if row.basis is None else Basis(**json.loads(row.basis)),
+            reader=row.reader,
+            report=row.report,
+            edition=row.number,
+            base=row.base,
+        )
+        for row in rows
+    )
