@@ -94,7 +94,7 @@ class PopulationYearQuestion:
 
     @classmethod
     def parse(cls, items: Items) -> Self:
-        keys = _Keys(cls.view, items, populations=("of",), once=("figures", "settings"))
+        keys = Keys(cls.view, items, populations=("of",), once=("figures", "settings"))
         return cls(keys.population("of"), keys.figures(), keys.settings())
 
     def canonical(self) -> str:
@@ -117,7 +117,7 @@ class ComparisonQuestion:
 
     @classmethod
     def parse(cls, items: Items) -> Self:
-        keys = _Keys(
+        keys = Keys(
             cls.view, items, populations=("this", "that"), once=("of", "figures", "settings")
         )
         return cls(
@@ -159,7 +159,7 @@ class TrendQuestion:
 
     @classmethod
     def parse(cls, items: Items) -> Self:
-        keys = _Keys(
+        keys = Keys(
             cls.view,
             items,
             once=("of", "from", "to", "figures", "settings"),
@@ -227,7 +227,7 @@ def address(
 PARTS = ("area", "sex", "period")
 
 
-class _Keys:
+class Keys:
     """The keys of one address, each refused in a sentence where it cannot be read.
 
     A population-year may also be given in three keys (of_area, of_sex, of_period), so that a plain
