@@ -1,0 +1,124 @@
+"""What stands round a page pinned to an edition: locator, notices, colophon, twins."""
+
+from engine import settings as named
+from engine.settings import Settings
+from server.pages.page import Frame, Notice
+from server.results.questions import Question, address
+from server.results.revision import Moved
+from server.sentences import standing
+from server.sentences.dates import day
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.text import _
+from server.store.heading import Heading
+from server.store.records import Basis
+
+
+def pinned(
+    heading: Heading,
+    question: Question,
+    *,
+    title: str,
+    place: Sentence,
+    figures: str,
+    settings: str,
+    notices: tuple[Notice, ...],
+) -> Frame:
+    """The frame of a view. `place` says what the page is about, in the locator's words."""
+    collection, edition = heading.collection, heading.edition
+    return Frame(
+        title=title,
+        address=address(collection.code, edition.number, question),
+        locator=phrase(
+            _("In {collection}, {edition}: "),
+            collection=Piece(collection.name, f"/c/{collection.code}"),
+            edition=Piece(
+                _("edition {number}", number=edition.number),
+                f"/c/{collection.code}/{edition.number}/contents",
+            ),
+        )
+        + place,
+        shown=_("Figures as released")
+        if figures == "released"
+        else _("Figures in full, which are those released: nothing is withheld here"),
+        nav="collections",
+        notices=notices,
+        colophon=(
+            (
+                _("Edition"),
+                _(
+                    "{collection}, edition {number}, made on {day} by {by}; content {digest}",
+                    collection=collection.name,
+                    number=edition.number,
+                    day=day(edition.made),
+                    by=edition.by,
+                    digest=" ".join(edition.digest[at : at + 4] for at in (0, 4, 8)),
+                ),
+            ),
+            (_("Settings"), settings_line(named.find(settings))),
+        ),
+    )
+
+
+def settings_line(settings: Settings) -> str:
+    """The named settings in one line."""
+    return _(
+        "{key}: {label}; intervals of {level} %",
+        key=settings.key,
+        label=_(settings.label),
+        level=round(100 * settings.level),
+    )
+
+
+def notices(
+    heading: Heading, question: Question, moved: Moved | None, headline: standing.Headline | None
+) -> tuple[Notice, ...]:
+    """That the edition was withdrawn, that a newer one stands and by how much it moves the
+    headline (`headline` is needed where `moved` is given)."""
+    out = []
+    if heading.edition.withdrawn:
+        event = heading.edition.events[-1]
+        text = standing.withdrawn(heading.edition.number, event.at, event.note)
+        out.append(Notice(_("Withdrawn"), text))
+    if moved is not None and headline is not None:
+        newer = Piece(
+            _("Edition {number} of {day}", number=moved.number, day=day(moved.made)),
+            address(heading.collection.code, moved.number, question),
+        )
+        out.append(
+            Notice(
+                _("A newer edition stands"),
+                standing.superseded(heading.edition.number, newer, headline),
+            )
+        )
+    return tuple(out)
+
+
+def twins(heading: Heading, question: Question) -> dict[str, str]:
+    """Addresses of the page's numbers as files."""
+    return {
+        twin: address(heading.collection.code, heading.edition.number, question, twin=twin)
+        for twin in ("csv", "xlsx", "json")
+    }
+
+
+def source(heading: Heading) -> str:
+    """The source line of a chart."""
+    return _(
+        "Source: {source}; edition {number}",
+        source=heading.edition.basis.source,
+        number=heading.edition.number,
+    )
+
+
+def basis(of: Basis) -> tuple[Sentence, ...]:
+    """How the counts were made."""
+    return (
+        phrase(
+            _("{people}, {dated}; {population} ({date}). Source: {source}."),
+            people=standing.basis_people(of.people),
+            dated=standing.basis_dated(of.dated_by),
+            population=standing.basis_population(of.population),
+            date=of.population_date,
+            source=of.source.rstrip("."),
+        ),
+    )

@@ -1,0 +1,199 @@
+"""What is said of one area, sex and year: the answer, the change, and each picture's finding."""
+
+import math
+from collections.abc import Mapping
+
+from engine.estimates import Estimate
+from engine.indicators import INDICATORS
+from server.sentences import names
+from server.sentences.movements import (
+    Movement,
+    bracketed,
+    has_interval,
+    limits,
+    movement,
+    shown,
+    size_limits,
+    years,
+)
+from server.sentences.numbers import number, whole
+from server.sentences.pieces import Sentence, phrase
+from server.sentences.text import _
+
+Estimates = Mapping[str, Estimate]
+
+
+def known(estimates: Estimates, key: str) -> bool:
+    """Whether an indicator has a value to speak of."""
+    return math.isfinite(float(estimates[key].value))
+
+
+def answer(sex: str, area: str, period: str, e0: Estimate, why_not: str) -> Sentence:
+    """The page's first line; `why_not` says why there is no figure where there is none."""
+    who = names.population_first(sex, area)
+    unit = INDICATORS["e0"].unit
+    if not math.isfinite(float(e0.value)):
+        return phrase(
+            _("{who} in {year}: no life expectancy can be given. {why}"),
+            who=who,
+            year=period,
+            why=why_not,
+        )
+    value = f"{shown(e0, unit)}\N{NO-BREAK SPACE}{_('years of life')}"
+    if not has_interval(e0):
+        return phrase(
+            _("{who} in {year} could expect {value} at the death rates of that year."),
+            who=who,
+            year=period,
+            value=value,
+        )
+    return phrase(
+        _("{who} in {year} could expect {value} {interval} at the death rates of that year."),
+        who=who,
+        year=period,
+        value=value,
+        interval=bracketed(limits(e0, unit)),
+    )
+
+
+def change(e0: Estimate, period: str) -> Sentence:
+    """How life expectancy moved since the year before."""
+    unit = INDICATORS["e0"].unit
+    kind = movement(e0, unit)
+    if kind is Movement.UNKNOWN:
+        return phrase(_("What changed since {year} cannot be given."), year=period)
+    amount = years(float(e0.value), unit.decimals)
+    if kind is Movement.TOO_SMALL:
+        return phrase(
+            _("Against {year} nothing changed that {decimals} decimal places would show."),
+            year=period,
+            decimals=str(unit.decimals),
+        )
+    if kind is Movement.NOT_CLEAR:
+        return phrase(
+            _("No clear change from {year}: {value} {interval}."),
+            year=period,
+            value=f"{shown(e0, unit, signed=True)}\N{NO-BREAK SPACE}{_('years')}",
+            interval=bracketed(limits(e0, unit, signed=True)),
+        )
+    if kind is Movement.WITHOUT_INTERVAL:
+        return phrase(
+            _("It was {value} in {year}; how much of the change is chance is not known."),
+            value=_("{amount} less", amount=amount)
+            if e0.value > 0
+            else _("{amount} more", amount=amount),
+            year=period,
+        )
+    texts = {
+        Movement.MORE: _("That is {amount} more than in {year} {interval}."),
+        Movement.LESS: _("That is {amount} less than in {year} {interval}."),
+        Movement.BARELY_MORE: _(
+            "That is {amount} more than in {year} {interval}, hardly more than chance alone could"
+            " do."
+        ),
+        Movement.BARELY_LESS: _(
+            "That is {amount} less than in {year} {interval}, hardly more than chance alone could"
+            " do."
+        ),
+    }
+    return phrase(
+        texts[kind], amount=amount, year=period, interval=bracketed(size_limits(e0, unit))
+    )
+
+
+def meanings(estimates: Estimates) -> Sentence:
+    """The median, e-dagger and H in plain words; those undefined are left out."""
+    said = []
+    if known(estimates, "median"):
+        said.append(_("Half would live past {age}.", age=_value(estimates, "median")))
+    if known(estimates, "edagger"):
+        said.append(
+            _(
+                "A death at these rates cost {amount} of further life on average.",
+                amount=years(float(estimates["edagger"].value)),
+            )
+        )
+    if known(estimates, "H"):
+        said.append(
+            _(
+                "Set against life expectancy that is an unevenness (H) of {value}: 0 would mean"
+                " that all reach the same age, 1 that the risk of dying is the same at every age.",
+                value=_value(estimates, "H"),
+            )
+        )
+    return phrase("{said}", said=" ".join(said)) if said else ()
+
+
+def _value(estimates: Estimates, key: str) -> str:
+    return shown(estimates[key], INDICATORS[key].unit)
+
+
+def survivors(sex: str, reach: Mapping[int, float], estimates: Estimates) -> str:
+    """`reach`: age to share of births that reach it."""
+    who = names.sex(sex)
+    parts = [
+        _("{count} would reach {age}", count=whole(100 * share), age=age)
+        for age, share in reach.items()
+    ]
+    if known(estimates, "median"):
+        parts = [*parts[:1], _("half would live past {age}", age=_value(estimates, "median"))]
+    return _("Of a hundred {who}, {parts}", who=who, parts=names.listed(parts))
+
+
+def deaths(estimates: Estimates) -> str:
+    if known(estimates, "median") and known(estimates, "mode"):
+        return _(
+            "Half of the deaths fall after {median}; the most common age at death is {mode}",
+            median=_value(estimates, "median"),
+            mode=_value(estimates, "mode"),
+        )
+    if known(estimates, "median"):
+        return _("Half of the deaths fall after {median}", median=_value(estimates, "median"))
+    return _("Deaths by age, as far as the table goes")
+
+
+def rates(lowest: str, estimates: Estimates, span: tuple[int, int]) -> str:
+    """`lowest` is the label of the ages with the lowest rate; empty where nobody died."""
+    if not lowest:
+        return _("Death rates by age")
+    if not known(estimates, "ageing_rate") or estimates["ageing_rate"].value <= 0:
+        return _("Death rates were lowest at ages {lowest}", lowest=lowest)
+    return _(
+        "Death rates were lowest at ages {lowest}; from {start} on they doubled every {years} years"
+        " of age",
+        lowest=lowest,
+        start=span[0],
+        years=number(math.log(2) / float(estimates["ageing_rate"].value), 1),
+    )
+
+
+def rise(estimates: Estimates, span: tuple[int, int]) -> str:
+    unit = INDICATORS["ageing_rate"].unit
+    slope = estimates["ageing_rate"]
+    if not known(estimates, "ageing_rate"):
+        return _("Rise of death rates from age to age")
+    value = f"{shown(slope, unit)}\N{NO-BREAK SPACE}%"
+    if not has_interval(slope):
+        return _(
+            "From {start} to {end} death rates rise by {value} per year of age",
+            start=span[0],
+            end=span[1],
+            value=value,
+        )
+    return _(
+        "From {start} to {end} death rates rise by {value} per year of age ({interval})",
+        start=span[0],
+        end=span[1],
+        value=value,
+        interval=limits(slope, unit),
+    )
+
+
+def gain(ages: str, share: float) -> str:
+    """`share` of the gain from lower death rates at all ages that lies in `ages`."""
+    return _(
+        "Lower death rates would add most at ages {ages}: {share} of the possible gain lies there",
+        ages=ages,
+        share=f"{whole(100 * share)}\N{NO-BREAK SPACE}%",
+    )
+
