@@ -20,7 +20,7 @@ class Piece:
 Sentence = tuple[Piece, ...]
 
 
-def phrase(text: str, **parts: "Piece | str") -> Sentence:
+def phrase(text: str, /, **parts: "Piece | str") -> Sentence:
     """A text of the catalogue with its {names} filled in by pieces, in the text's own order.
 
     Raises: KeyError where the text names a part that is not given.

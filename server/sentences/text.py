@@ -29,13 +29,13 @@ def speaking(code: str) -> Iterator[None]:
         _LANGUAGE.reset(token)
 
 
-def _(text: str, **values: object) -> str:
+def _(text: str, /, **values: object) -> str:
     """The text in the language in force, with its {names} filled in."""
     if _LANGUAGE.get() == "pseudo":
         text = f"⟦{text}⟧"
     return text.format(**values) if values else text
 
 
-def n_(one: str, many: str, count: int, **values: object) -> str:
+def n_(one: str, many: str, count: int, /, **values: object) -> str:
     """Singular or plural by `count`, which is also the value of {count} unless given."""
     return _(one if count == 1 else many, **{"count": count, **values})
