@@ -9,8 +9,7 @@ from server.store.tables import Base
 
 
 def run(url: str) -> None:
-    engine = make_engine(url, migrating=True)
-    with engine.connect() as connection:
+    with make_engine(url, migrating=True).connect() as connection:
         on_sqlite = connection.dialect.name == "sqlite"
         if on_sqlite:  # one migration at a time; the second waits and finds nothing to do
             connection = connection.execution_options(sqlite_begin="IMMEDIATE")
@@ -18,6 +17,7 @@ def run(url: str) -> None:
             connection=connection,
             target_metadata=Base.metadata,
             render_as_batch=on_sqlite,
+            transactional_ddl=True,  # SQLite has it too, once its driver begins nothing itself
             compare_type=True,
         )
         with context.begin_transaction():
@@ -26,7 +26,6 @@ def run(url: str) -> None:
                 broken = connection.exec_driver_sql("PRAGMA foreign_key_check").fetchall()
                 if broken:
                     raise RuntimeError(f"the migration broke foreign keys: {broken[:5]}")
-    engine.dispose()
 
 
 if context.is_offline_mode():

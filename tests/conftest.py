@@ -1,0 +1,132 @@
+"""Databases for the tests: each test gets a fresh one, on SQLite and on PostgreSQL."""
+
+import shutil
+from collections.abc import Callable, Iterator
+from contextlib import AbstractContextManager, contextmanager
+from itertools import count
+from pathlib import Path
+
+import pytest
+from sqlalchemy import Engine, create_engine, event, text
+from sqlalchemy.orm import Session, sessionmaker
+
+from server.store.connect import make_engine, sessions
+from server.store.migrating import migrate
+from tests import postgres
+
+BOTH = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgres)]
+_NUMBERS = count(1)
+
+
+@pytest.hookimpl(trylast=True)
+def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
+    """The working loop is everything that is not marked as something slower."""
+    for item in items:
+        if not any(item.get_closest_marker(name) for name in ("slow", "browser", "postgres")):
+            item.add_marker("fast")
+
+
+@pytest.fixture(scope="session")
+def postgres_server() -> Iterator[str]:
+    """One server for the run (for each worker, where there are several)."""
+    with postgres.server() as address:
+        yield address
+
+
+@pytest.fixture(scope="session")
+def postgres_template(postgres_server: str) -> str:
+    """Name of a migrated database from which the tests' own are copied."""
+    _create(postgres_server, "ebbline_template", "template1")
+    migrate(postgres_server + "ebbline_template")
+    return "ebbline_template"
+
+
+@pytest.fixture(scope="session")
+def sqlite_template(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    path = tmp_path_factory.mktemp("template") / "ebbline.db"
+    migrate(f"sqlite:///{path}")
+    return path
+
+
+@pytest.fixture(params=BOTH)
+def empty_url(request: pytest.FixtureRequest) -> Iterator[str]:
+    """A database without tables, on either."""
+    if request.param == "sqlite":
+        yield f"sqlite:///{request.getfixturevalue('tmp_path') / 'empty.db'}"
+    else:
+        yield from _fresh(request.getfixturevalue("postgres_server"), "template1")
+
+
+@pytest.fixture(params=BOTH)
+def db_url(request: pytest.FixtureRequest) -> Iterator[str]:
+    """A migrated, empty database, on either."""
+    if request.param == "sqlite":
+        yield request.getfixturevalue("sqlite_url")
+    else:
+        template = request.getfixturevalue("postgres_template")
+        yield from _fresh(request.getfixturevalue("postgres_server"), template)
+
+
+@pytest.fixture
+def sqlite_url(sqlite_template: Path, tmp_path: Path) -> str:
+    """A migrated, empty SQLite file, for tests of what does not depend on the database."""
+    return f"sqlite:///{shutil.copy(sqlite_template, tmp_path / 'ebbline.db')}"
+
+
+@pytest.fixture
+def engine(db_url: str) -> Iterator[Engine]:
+    made = make_engine(db_url)
+    yield made
+    made.dispose()
+
+
+@pytest.fixture
+def new_session(engine: Engine) -> sessionmaker[Session]:
+    """Makes further sessions on the test's database, as other requests would."""
+    return sessions(engine)
+
+
+@pytest.fixture
+def session(new_session: sessionmaker[Session]) -> Iterator[Session]:
+    with new_session() as opened:
+        yield opened
+
+
+@pytest.fixture
+def count_statements() -> Callable[[], AbstractContextManager[list[str]]]:
+    """`with count_statements() as statements:` collects what is sent to any database inside it,
+    without the beginning of transactions."""
+
+    @contextmanager
+    def counting() -> Iterator[list[str]]:
+        statements: list[str] = []
+
+        def note(_c: object, _cursor: object, statement: str, *_rest: object) -> None:
+            if not statement.startswith("BEGIN"):
+                statements.append(statement)
+
+        event.listen(Engine, "before_cursor_execute", note)
+        try:
+            yield statements
+        finally:
+            event.remove(Engine, "before_cursor_execute", note)
+
+    return counting
+
+
+def _fresh(server: str, template: str) -> Iterator[str]:
+    name = f"ebbline_{next(_NUMBERS)}"
+    _create(server, name, template)
+    yield server + name
+    _administer(server, f"DROP DATABASE {name} WITH (FORCE)")
+
+
+def _create(server: str, name: str, template: str) -> None:
+    _administer(server, f"CREATE DATABASE {name} TEMPLATE {template}")
+
+
+def _administer(server: str, statement: str) -> None:
+    engine = create_engine(server + "postgres", isolation_level="AUTOCOMMIT")
+    with engine.connect() as connection:
+        connection.execute(text(statement))
+    engine.dispose()
