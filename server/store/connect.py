@@ -5,23 +5,24 @@ from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
 
-from sqlalchemy import Connection, Engine, create_engine, event, make_url
+from sqlalchemy import Connection, Engine, NullPool, create_engine, event, make_url
 from sqlalchemy.orm import Session, sessionmaker
 
 __all__ = ["Engine", "Session", "make_engine", "sessions", "transaction"]
 
 
 def make_engine(url: str, *, migrating: bool = False) -> Engine:
-    """An engine for SQLite or PostgreSQL. `migrating` leaves SQLite's foreign keys unenforced,
-    since changing a table there means making it anew."""
+    """An engine for SQLite or PostgreSQL. `migrating` keeps no connection for later, and leaves
+    SQLite's foreign keys unenforced, since changing a table there means making it anew."""
+    pool = NullPool if migrating else None
     if url.startswith("postgresql:"):
         url = url.replace("postgresql:", "postgresql+psycopg:", 1)
     address = make_url(url)
     if address.get_backend_name() != "sqlite":
-        return create_engine(address, pool_pre_ping=True)
+        return create_engine(address, poolclass=pool, pool_pre_ping=True)
     if address.database:
         Path(address.database).parent.mkdir(parents=True, exist_ok=True)
-    engine = create_engine(address)
+    engine = create_engine(address, poolclass=pool)
     _prepare_sqlite(engine, foreign_keys=not migrating)
     return engine
 
