@@ -1,0 +1,73 @@
+"""What every indicator states about itself; the entries stand in engine/indicators."""
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+from engine.ages import Array
+from engine.chain import Chain
+from engine.estimates import Reason
+from engine.tables import Partials
+
+
+@dataclass(frozen=True, slots=True)
+class Unit:
+    """What a printed figure counts. The engine speaks per person-year and in years only; `scale`
+    turns its number into the printed one, for display and nowhere else."""
+
+    key: str
+    label: str
+    scale: float
+    decimals: int
+
+
+@dataclass(frozen=True, slots=True)
+class Needs:
+    """What the counts must hold before the number may be read."""
+
+    ages: tuple[int, ...] = ()  # each begins an age group
+    open_deaths: bool = False  # somebody died in the open group, or a law spreads it
+    open_small: bool = False  # at most the settings' share of births reach it, or a law spreads it
+    span_deaths: bool = False  # somebody died in the settings' span for the ageing rate
+    otherwise: Reason = Reason.TOO_FEW_AGES  # why there is no number though all this holds
+
+
+def _none(chain: Chain) -> Partials | Array:
+    raise ValueError("this indicator is not smooth and has no partial derivatives")
+
+
+@dataclass(frozen=True, slots=True)
+class Indicator:
+    """A number read off a life table, or off rates. Every field would be true in a printed report.
+
+    `partials` are the derivatives by the table's columns for a number read off the table, and those
+    by the rates [..., age] for one read off rates. `redraw` reads the number off simulated counts,
+    given the chain of the observed ones, where a choice made on the observed counts is to be kept;
+    without it `value` does.
+    """
+
+    key: str
+    symbol: str
+    label: str
+    unit: Unit
+    definition: str
+    formula: str
+    source: str
+    why_not_smooth: str  # empty where it is smooth
+    needs: Needs
+    value: Callable[[Chain], Array]
+    partials: Callable[[Chain], Partials | Array] = _none
+    redraw: Callable[[Chain, Chain], Array] | None = None  # (observed, simulated)
+
+    @property
+    def smooth(self) -> bool:
+        """It has a gradient: hence a delta interval, sensitivities and contributions."""
+        return not self.why_not_smooth
+
+    @property
+    def spread(self) -> bool:
+        """It tells how deaths are spread over ages, so the open group must be small or modelled."""
+        return self.needs.open_small
+
+    def drawn(self, observed: Chain, simulated: Chain) -> Array:
+        """The number read off simulated counts, [...]."""
+        return self.value(simulated) if self.redraw is None else self.redraw(observed, simulated)
