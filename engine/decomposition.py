@@ -16,6 +16,7 @@ from engine.tables import LifeTable
 
 NODES, WEIGHTS = np.polynomial.legendre.leggauss(8)
 BESIDE = 1e-13  # relative distance at which the two sides of a jump are read
+DOUBLINGS = 8  # cuts as the open group's rate doubles: 1 / m bends too sharply for eight nodes
 LEAST_DRAWS = 0.9  # share of draws that must give a figure for limits to be stated
 
 
@@ -40,8 +41,9 @@ def contributions(
 
     An age's contribution is the integral of d indicator / d mx over that age's own change. The line
     is cut wherever the chain has a kink (the first-year rules change their piece, a group's rate
-    reaches the bound of ax), with eight Gauss-Legendre nodes to a piece. Where a first-year rule
-    jumps by the rounding of its printed coefficients, the jump is age 0's if m0 is what moves it.
+    reaches the bound of ax) and wherever the open group's rate has doubled, with eight
+    Gauss-Legendre nodes to a piece. Where a first-year rule jumps by the rounding of its printed
+    coefficients, the jump is age 0's if m0 is what moves it.
 
     Person-years and the infants' mix of sexes change on the same line, but are no age's rate: what
     they move (a fitted law's weights, the mean of two first-year rules) is the remainder. Between
@@ -132,10 +134,10 @@ def arriaga(this: LifeTable, that: LifeTable) -> Array:
 
 @dataclass(frozen=True, slots=True)
 class _Cuts:
-    """Where on the line the chain has a kink, [cut, ...], in order; 1 where there is none."""
+    """Where the line is cut, [cut, ...], in order; 1 where it is not."""
 
     at: Array
-    toward: Array  # sign of the motion through the break of a first-year rule; 0 at other kinks
+    toward: Array  # sign of the motion through the break of a first-year rule; 0 at other cuts
 
 
 @dataclass(frozen=True, slots=True)
@@ -174,6 +176,9 @@ class _Line:
         still = np.zeros(np.broadcast_shapes(self.step.shape[:-1], *(at.shape for at, _ in found)))
         with np.errstate(all="ignore"):
             bound = (2 / grid.widths[:-1] - self.from_mx[..., :-1]) / self.step[..., :-1]
+            last = self.from_mx[..., -1], self.step[..., -1]
+            least = np.minimum(last[0], last[0] + last[1])
+            found += [((least * 2**k - last[0]) / last[1], still) for k in range(1, DOUBLINGS + 1)]
         found += [(bound[..., x], still) for x in range(len(grid) - 1)]
         at = np.stack([np.broadcast_to(at, still.shape) for at, _ in found])
         toward = np.stack([np.broadcast_to(sign, still.shape) for _, sign in found])
