@@ -85,9 +85,16 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
     asked = [question.this, question.that, *([both] if both else [])]
     loaded = load(session, collection.code, heading.edition.number, asked)
     this, that = _sides(collection.code, question, loaded, settings)
-    shared = shared_deaths(loaded.get(both) if both else None, this.panel.grid)
+    shared = shared_deaths(loaded.get(both) if both else None, this.panel, that.panel)
+    difference = differences(
+        this.estimates,
+        this.panel,
+        that.panel,
+        settings,
+        (stream(collection.code, question.this), stream(collection.code, question.that)),
+        shared=shared,
+    )
     codes = pair_stream(collection.code, question.this, question.that)
-    difference = differences(this.estimates, this.panel, that.panel, settings, codes, shared=shared)
     if question.this == question.that:
         difference = {key: _no_sampling(estimate) for key, estimate in difference.items()}
     return Comparison(

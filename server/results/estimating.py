@@ -22,7 +22,7 @@ def stream(collection: str, one: PopulationYear) -> NDArray[np.str_]:
 
 
 def pair_stream(collection: str, this: PopulationYear, that: PopulationYear) -> NDArray[np.str_]:
-    """The code a difference's draws are keyed by, no batch axes."""
+    """The code the draws of a pair's contributions are keyed by, no batch axes."""
     return np.array(f"{collection}/{this.code}/{that.code}", dtype=np.str_)
 
 
@@ -41,11 +41,12 @@ def differences(
     this: Panel,
     that: Panel,
     settings: Settings,
-    codes: NDArray[np.str_],
+    codes: tuple[NDArray[np.str_], NDArray[np.str_]],
     *,
     shared: Array | None = None,
 ) -> dict[str, Estimate]:
-    """This less that, both on one grid; `shared` deaths are counted once."""
+    """This less that, both on one grid; `shared` deaths are counted once. `codes` are this one's
+    and that one's."""
     return {
         key: indicators.difference(
             indicators.find(key), this, that, settings, shared=shared, streams=codes

@@ -3,7 +3,9 @@
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 
-from engine.ages import AgeGrid, Array
+import numpy as np
+
+from engine.ages import Array
 from engine.panel import Panel
 from server.results.questions import PopulationYear
 from server.sentences.names import listed
@@ -178,6 +180,12 @@ def _lineage(area: str, parents: dict[str, str]) -> Iterable[str]:
         area = parents.get(area, "")
 
 
-def shared_deaths(shared: Loaded | None, grid: AgeGrid) -> Array | None:
-    """Deaths of the overlap on the grid two panels are compared on; None where there are none."""
-    return None if shared is None else shared.panel.regroup(grid).deaths
+def shared_deaths(shared: Loaded | None, this: Panel, that: Panel) -> Array | None:
+    """Deaths counted in both panels, on the grid they share; None where there are none.
+
+    An area delivered as such may count fewer than its parts do: no more are shared than it counts.
+    """
+    if shared is None:
+        return None
+    both = shared.panel.regroup(this.grid).deaths
+    return np.minimum(both, np.minimum(this.deaths, that.deaths))

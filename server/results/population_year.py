@@ -10,7 +10,7 @@ from engine.ages import Array
 from engine.chain import Chain, run
 from engine.estimates import Estimate
 from engine.settings import Settings
-from server.results.estimating import USUAL, differences, estimates, pair_stream, stream
+from server.results.estimating import USUAL, differences, estimates, stream
 from server.results.loading import Holdings, Loaded, holdings, load
 from server.results.questions import PopulationYear, PopulationYearQuestion
 from server.results.revision import Moved, moved
@@ -106,7 +106,7 @@ def _before(
             this.regroup(grid),
             that.regroup(grid),
             settings,
-            pair_stream(collection, of, previous),
+            (stream(collection, of), stream(collection, previous)),
         ),
     )
 

@@ -13,7 +13,7 @@ from engine.estimates import Estimate, Reason
 from engine.indicators import Indicator
 from engine.panel import Panel
 from engine.settings import Settings
-from server.results.estimating import pair_stream, stream
+from server.results.estimating import stream
 from server.results.loading import Holdings, Loaded, NotInEdition, holdings, load
 from server.results.questions import PopulationYear, TrendQuestion
 from server.sentences.numbers import whole
@@ -171,7 +171,7 @@ def _changes(
             this.regroup(grid),
             that.regroup(grid),
             settings,
-            streams=pair_stream(collection, last, first),
+            streams=(stream(collection, last), stream(collection, first)),
         )
         out.value[index], out.low[index], out.high[index] = part.value, part.low, part.high
         out.reason[index] = part.reason

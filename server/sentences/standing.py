@@ -32,7 +32,7 @@ def superseded(shown: int, newer: Piece, headline: Headline) -> Sentence:
     here, there = (unit.scale * value for value in (headline.here, headline.there))
     decimals = unit.decimals + 1  # what a revision moves is small
     moved = number(abs(there - here), decimals)
-    values = {
+    values: dict[str, Piece | str] = {
         "stays": stays,
         "newer": newer,
         "label": headline.label,

@@ -1,0 +1,171 @@
+"""The tables of a population-year page, from which its pictures and twins are made too."""
+
+import numpy as np
+
+from engine.ages import AgeGrid, Array
+from engine.estimates import Estimate
+from engine.indicators import find
+from server.exports.table import Cell, Column, Gap, GapKind, Row, Table
+from server.pages.cells import columns, count, number, triple
+from server.results.estimating import USUAL
+from server.results.population_year import Findings
+from server.sentences import names
+from server.sentences.text import _
+
+RADIX = 100_000
+DAYS = 365.25
+
+
+def figures(found: Findings) -> Table:
+    """The few main numbers: this year, the year before, the change, each with its interval."""
+    heads = [Column("indicator", _("Indicator"))]
+    heads += columns("value", dated(found.of.period, found.loaded.status), 1)
+    note = _(
+        "Under each figure its {level} % interval, which covers chance in deaths only.",
+        level=round(100 * found.settings.level),
+    )
+    before = found.before
+    if before:
+        heads += columns("before", dated(before.of.period, before.loaded.status), 1)
+        heads += columns("change", _("change"), 1, signed=True)
+        note += " " + _(
+            "Change: {year} less {before}, taken before rounding.",
+            year=found.of.period,
+            before=before.of.period,
+        )
+    return Table(
+        "figures",
+        _("The figures of {who}", who=names.sex_and_year(found.of.sex, found.of.period)),
+        tuple(heads),
+        tuple(_figure_row(found, key) for key in USUAL),
+        note,
+    )
+
+
+def _figure_row(found: Findings, key: str) -> Row:
+    indicator = find(key)
+    cells: list[Cell] = [_(indicator.label)]
+    sides: list[Estimate] = [found.estimates[key]]
+    if found.before:
+        sides += [found.before.estimates[key], found.before.change[key]]
+    for side in sides:
+        cells += triple(side, indicator.unit, found.settings)
+    return Row(tuple(cells), second=_second_line(key, found), decimals=indicator.unit.decimals)
+
+
+def _second_line(key: str, found: Findings) -> str:
+    """What the number counts, under its name."""
+    first, last = found.settings.ageing_span
+    return {
+        "e65": _("years still to live"),
+        "median": _("age that half would reach"),
+        "mode": _("years of age"),
+        "edagger": _("e-dagger, years"),
+        "H": _("H: years lost per death, for each year of life expectancy"),
+        "ageing_rate": _("% per year of age, {first} to {last}", first=first, last=last),
+    }.get(key) or _(find(key).unit.label)
+
+
+def dated(period: str, status: str) -> str:
+    """A year as a column's head."""
+    return _("{year}, provisional", year=period) if status == "provisional" else period
+
+
+def life(found: Findings) -> Table:
+    """The life table, of 100,000 born."""
+    heads = (
+        Column("age", _("age")),
+        Column("deaths", _("deaths"), decimals=0),
+        Column("person_years", _("person-years"), decimals=0),
+        Column("mx", "m_x", _("per 1,000"), 3),
+        Column("ax", "a_x", _("years"), 2),
+        Column("qx", "q_x", decimals=5),
+        Column("lx", "l_x", decimals=0),
+        Column("dx", "d_x", decimals=0),
+        Column("Lx", "L_x", decimals=0),
+        Column("ex", "e_x", _("years"), 2),
+    )
+    return Table(
+        "life",
+        _("Life table of {who}", who=names.sex_and_year(found.of.sex, found.of.period)),
+        heads,
+        tuple(_life_row(found, at) for at in range(len(found.chain.table.grid))),
+        _("Survivors, deaths and years lived are those of 100,000 born."),
+    )
+
+
+def _life_row(found: Findings, at: int) -> Row:
+    table, rates = found.chain.table, found.chain.rates
+    counted = at < counted_groups(found)
+    if counted:
+        counts = (count(rates.deaths[at]), number(rates.exposure[at]))
+        rate = count(1000 * table.mx[at])
+    else:
+        none = Gap(GapKind.NOT_AVAILABLE, _("A fitted law stands in for counts at these ages."))
+        counts, rate = (none, none), number(1000 * table.mx[at])
+    read = (table.ax[at], table.qx[at])
+    of_born = (table.lx[at], table.dx[at], table.Lx[at])
+    return Row(
+        (
+            table.grid.labels[at],
+            *counts,
+            rate,
+            *(number(value) for value in read),
+            *(number(RADIX * value) for value in of_born),
+            number(table.ex[at]),
+        ),
+        second=_("rate of joined ages") if counted and rates.joined[at] else "",
+    )
+
+
+def counted_groups(found: Findings) -> int:
+    """How many groups of the table rest on counts of their own; above them a law may stand."""
+    own = len(found.loaded.panel.grid)
+    return own - 1 if found.chain.modelled else own
+
+
+def rises(found: Findings) -> Table:
+    """Rise of death rates between neighbouring five-year groups; only those with enough deaths."""
+    k = found.rises
+    rows = tuple(
+        Row((int(at), 100 * value, 100 * low, 100 * high))
+        for at, value, low, high in zip(k.at, k.value, k.low, k.high, strict=True)
+        if np.isfinite(value)
+    )
+    heads = (
+        Column("age", _("age"), decimals=0),
+        *columns("rise", _("rise"), 1, unit=_("% per year of age")),
+    )
+    return Table("rise", _("Rise of death rates with age"), heads, rows)
+
+
+def gains(found: Findings) -> Table:
+    """Days of life expectancy for 1 % lower rates, by age group and per year of age in it."""
+    grid = found.loaded.panel.grid
+    days = DAYS * found.gain
+    rows = [
+        Row((label, number(gain), number(gain / width) if np.isfinite(width) else _open()))
+        for label, gain, width in zip(grid.labels, days, grid.widths, strict=True)
+    ]
+    total = Row((_("all ages"), number(days.sum()), _open()))
+    heads = (
+        Column("age", _("age")),
+        Column("days", _("days"), _("for the group"), 2),
+        Column("days_per_year", _("days"), _("per year of age"), 3),
+    )
+    return Table(
+        "gain",
+        _("Days of life expectancy gained if death rates were 1 % lower"),
+        heads,
+        tuple(rows),
+        total=total,
+    )
+
+
+def _open() -> Gap:
+    return Gap(GapKind.UNDEFINED, _("The group has no end."))
+
+
+def per_year(grid: AgeGrid, values: Array) -> Array:
+    """Values of the closed groups, spread over their years of age, [age - 1]."""
+    return values[..., :-1] / grid.widths[:-1]
