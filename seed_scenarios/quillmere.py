@@ -1,0 +1,99 @@
+"""The demonstration collection: an invented island, told as its office would have handed it in."""
+
+import datetime as dt
+from dataclasses import replace
+
+from server.actions.check_upload import check_upload
+from server.actions.map_upload import map_upload
+from server.actions.receive_upload import receive_upload
+
+from seed_scenarios.quillmere_counts import REGIONS, REVISED, WHOLE, YEARS, Counts, counted
+from seed_scenarios.quillmere_files import births_csv, deaths_csv, population_csv
+from server.actions import LOCAL, Basis, Mapping, Session, Viewer
+from server.actions.commit_upload import commit_upload
+from server.actions.create_collection import create_collection
+
+CODE = "quillmere"
+STORY = (
+    "Six regions of an island country that is nowhere, 1999 to 2023, women and men, drawn by "
+    "chance from published mortality laws. Length of life grows everywhere, but: in Tollbay a "
+    "plant closes in 2009, and men of working age stop gaining for eight years; in 2018 a hot "
+    "summer lifts deaths at ages 75 and over, most in Elderwick; in Harrowfen infant mortality, "
+    "twice the country's, comes down to it within seven years from 2006. Little Auk is so small "
+    "that its figures jump by chance alone. Stonereach closes its ages at 85 and over, and its "
+    "pages show what that costs. 2023 is provisional: about one death in a hundred is not yet "
+    "reported. Edition 2 revises 2021 in Northlade, where deaths under inquest had been left out."
+)
+OFFICE = Viewer("Statistical Office of Quillmere", LOCAL.rights)
+BASIS = Basis(
+    people="residents",
+    dated_by="death",
+    population="midyear",
+    population_date="1 July of each year",
+    source="Statistical Office of Quillmere: civil register, population register",
+)
+_COLUMNS = Mapping(
+    year="year",
+    sex="sex",
+    area="area",
+    area_name="area_name",
+    sex_codes=(("women", "f"), ("men", "m")),
+    whole=WHOLE.code,
+    whole_name=WHOLE.name,
+    delivered=(WHOLE.code,),  # the national office counts the whole itself
+)
+MAPPINGS = {
+    "deaths": replace(_COLUMNS, age="age", deaths="deaths", status="status"),
+    "population": replace(_COLUMNS, age="age", population="population"),
+    "births": replace(_COLUMNS, births="births"),
+}
+Files = dict[str, tuple[str, bytes]]  # role: name and content
+
+
+def build(session: Session, *, now: dt.datetime) -> None:
+    """Open the collection and hand in its two editions."""
+    create_collection(
+        session, code=CODE, name="All deaths, Quillmere", owner=OFFICE.name, by=OFFICE, now=now
+    )
+    everywhere = (*(region.code for region in REGIONS), WHOLE.code)
+    _hand_in(
+        session,
+        _files(counted(revised=False), YEARS, everywhere),
+        note="First delivery: 1999 to 2022 final, 2023 provisional.",
+        now=now,
+    )
+    _hand_in(
+        session,
+        _files(counted(revised=True), (REVISED,), ("northlade", WHOLE.code)),
+        note=f"Revision of {REVISED} in Northlade: deaths under inquest, left out at first.",
+        now=now,
+    )
+
+
+def _files(counts: dict[str, Counts], years: tuple[int, ...], areas: tuple[str, ...]) -> Files:
+    return {
+        "deaths": ("quillmere-deaths.csv", deaths_csv(counts, years, areas)),
+        "population": ("quillmere-population.csv", population_csv(counts, years, areas)),
+        "births": ("quillmere-births.csv", births_csv(counts, years, areas)),
+    }
+
+
+def _hand_in(session: Session, files: Files, *, note: str, now: dt.datetime) -> None:
+    """One upload, from the bytes to an edition."""
+    upload = receive_upload(
+        session,
+        collection=CODE,
+        files=[(role, name, content) for role, (name, content) in files.items()],
+        by=OFFICE,
+        now=now,
+    )
+    map_upload(
+        session,
+        upload_id=upload.id,
+        mappings=MAPPINGS,
+        basis=BASIS,
+        by=OFFICE,
+        now=now,
+    )
+    check_upload(session, upload_id=upload.id)
+    commit_upload(session, upload_id=upload.id, note=note, by=OFFICE, now=now)
