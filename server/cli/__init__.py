@@ -1,0 +1,57 @@
+"""The same actions from a terminal: `ebbline demo`, `ebbline hand-in`, `ebbline figure` ..."""
+
+import argparse
+import sys
+from collections.abc import Sequence
+from dataclasses import replace
+from pathlib import Path
+
+from server.cli import database, demo, editions, figure, hand_in, rebuild, serve
+from server.cli.refusals import REFUSALS, Refused
+from server.config import Config
+from server.sentences.text import _, speaking
+
+COMMANDS = (demo, serve, database, hand_in, figure, editions, rebuild)
+
+
+def parser() -> argparse.ArgumentParser:
+    """All commands; each is a module with `add(commands)`, or several kin in one."""
+    top = argparse.ArgumentParser(
+        prog="ebbline",
+        description=_(
+            "An almanac of mortality: from counts of deaths and people to life tables, comparisons "
+            "and trends, with an address for every figure."
+        ),
+        epilog=_(
+            "Begin with `ebbline demo`. `ebbline COMMAND --help` explains a command with examples."
+        ),
+    )
+    commands = top.add_subparsers(title=_("commands"), metavar="COMMAND", required=True)
+    for command in COMMANDS:
+        command.add(commands)
+    return top
+
+
+def main(arguments: Sequence[str] | None = None) -> int:
+    """Run one command; 0 where it did what was asked, else a sentence and another number."""
+    try:
+        config = Config.from_environment()
+    except ValueError as error:
+        print(f"ebbline: {error}", file=sys.stderr)
+        return 2
+    with speaking(config.language):
+        asked = parser().parse_args(arguments)
+        try:
+            return int(asked.run(asked, _with_options(config, asked)))
+        except REFUSALS as error:
+            print(f"ebbline: {error}", file=sys.stderr)
+            return error.exit_code if isinstance(error, Refused) else 2
+
+
+def _with_options(config: Config, asked: argparse.Namespace) -> Config:
+    """What was given by hand goes before the environment; a data folder before any database."""
+    if getattr(asked, "data", None) is not None:
+        config = replace(config, data=Path(asked.data), database_url="")
+    if getattr(asked, "port", None) is not None:
+        config = replace(config, port=asked.port)
+    return config

@@ -1,0 +1,37 @@
+"""The database a command works on."""
+
+from collections.abc import Iterator
+from contextlib import contextmanager
+
+from server.cli.refusals import Refused
+from server.config import Config
+from server.sentences.text import _
+from server.store.connect import Session, make_engine, sessions
+from server.store.migrating import schema_state
+
+
+def require_head(config: Config) -> None:
+    """Refuse where the database is not in the shape this version needs."""
+    state = schema_state(make_engine(config.url))
+    if state == "empty":
+        raise Refused(
+            _("There is no database yet at {url}. Make it: ebbline database", url=config.url),
+            exit_code=1,
+        )
+    if state != "head":
+        raise Refused(
+            _(
+                "The database at {url} was made by another version. Bring it up to date: ebbline "
+                "database",
+                url=config.url,
+            ),
+            exit_code=1,
+        )
+
+
+@contextmanager
+def opened(config: Config) -> Iterator[Session]:
+    """A session on the database, which must be up to date."""
+    require_head(config)
+    with sessions(make_engine(config.url))() as session:
+        yield session

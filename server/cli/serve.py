@@ -1,0 +1,74 @@
+"""`ebbline serve`: the pages, on this computer."""
+
+import argparse
+import socket
+
+import uvicorn
+
+from server.app import create_app
+from server.cli.opened import require_head
+from server.cli.options import Commands, add_command, add_port
+from server.cli.refusals import Refused
+from server.config import Config
+from server.sentences.text import _
+
+
+def add(commands: Commands) -> None:
+    command = add_command(
+        commands,
+        "serve",
+        run,
+        summary=_("serve the pages on this computer"),
+        text=_(
+            "Serves the pages until it is stopped with Ctrl-C. It refuses to start on a database "
+            "that is not up to date."
+        ),
+        examples=("ebbline serve", "ebbline serve --data /srv/ebbline --port 8010"),
+    )
+    add_port(command)
+
+
+def run(asked: argparse.Namespace, config: Config) -> int:
+    require_head(config)
+    return serve(config)
+
+
+def serve(config: Config) -> int:
+    """Serve until stopped."""
+    require_port(config)
+    print(
+        _(
+            "Ebbline is at http://{host}:{port}/ (stop it with Ctrl-C).",
+            host=config.host,
+            port=config.port,
+        ),
+        flush=True,
+    )
+    uvicorn.run(
+        create_app(config),
+        host=config.host,
+        port=config.port,
+        log_level="warning",
+        server_header=False,
+        timeout_graceful_shutdown=10,
+    )
+    return 0
+
+
+def require_port(config: Config) -> None:
+    """Refuse a port that another program holds."""
+    with socket.socket(socket.AF_INET6 if ":" in config.host else socket.AF_INET) as trial:
+        trial.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
+        try:
+            trial.bind((config.host, config.port))
+        except OSError as error:
+            raise Refused(
+                _(
+                    "Port {port} on {host} cannot be had: another program holds it, or it is not "
+                    "allowed. Stop that program, or choose another port: --port {other}",
+                    port=config.port,
+                    host=config.host,
+                    other=config.port + 1,
+                ),
+                exit_code=1,
+            ) from error

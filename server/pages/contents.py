@@ -1,0 +1,172 @@
+"""One edition: what it holds, life expectancy in every area, where to go, and its standing."""
+
+from dataclasses import dataclass, replace
+from typing import ClassVar
+
+from server.pages import contents_tables, frames
+from server.pages.page import Frame, Notice, Page
+from server.results.contents import Contents, ContentsQuestion, contents
+from server.results.loading import Holdings
+from server.results.questions import (
+    DEFAULT_INDICATOR,
+    ComparisonQuestion,
+    PopulationYear,
+    PopulationYearQuestion,
+    TrendQuestion,
+    address,
+)
+from server.sentences import contents as say
+from server.sentences import names
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.text import _
+from server.store import editions
+from server.store.connect import Session
+from server.store.heading import Heading
+
+Options = tuple[tuple[str, str], ...]  # value and label, for a form
+APART = 10  # years between the two that are proposed for a comparison
+
+
+@dataclass(frozen=True, slots=True)
+class Choice:
+    """What a plain form offers to compare, and what it proposes."""
+
+    action: str
+    areas: Options
+    sexes: Options
+    periods: Options
+    this: PopulationYear
+    that: PopulationYear
+
+
+@dataclass(frozen=True, slots=True)
+class Standing:
+    """What may be done with the edition's standing: where the form leads and what it says."""
+
+    action: str
+    button: str
+    text: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ContentsPage(Page):
+    """What is in this edition?"""
+
+    template: ClassVar[str] = "contents/page.html"
+    questions: tuple[Sentence, ...]
+    choice: Choice | None  # None: the edition holds nothing
+    basis: tuple[Sentence, ...]
+    editions: contents_tables.Listing  # of the whole collection: it changes, the figures do not
+    standing: Standing
+
+
+def build(session: Session, heading: Heading, question: ContentsQuestion) -> ContentsPage:
+    found = contents(session, heading, question)
+    held, collection, edition = found.holdings, heading.collection, heading.edition
+    choice = _choice(heading, held) if held.periods else None
+    return ContentsPage(
+        frame=_frame(heading, question),
+        answer=say.answer(collection.name, edition.number, held.periods, len(held.areas)),
+        lead=_lead(found),
+        tables=(contents_tables.areas(found, found.newest),) if found.newest else (),
+        twins=frames.twins(heading, question) if found.newest else {},
+        questions=_questions(heading, question, held, choice) if choice else (),
+        choice=choice,
+        basis=frames.basis(edition.basis),
+        editions=contents_tables.listing(
+            collection, editions.listing(session, collection.code), heading.newest
+        ),
+        standing=_standing(heading),
+    )
+
+
+def _frame(heading: Heading, question: ContentsQuestion) -> Frame:
+    frame = frames.pinned(
+        heading,
+        question,
+        title=heading.collection.name,
+        place=phrase(_("contents")),
+        figures=question.figures,
+        settings=question.settings,
+        notices=_notices(heading, question),
+    )
+    return replace(frame, shown=_("Data owner: {owner}", owner=heading.collection.owner))
+
+
+def _notices(heading: Heading, question: ContentsQuestion) -> tuple[Notice, ...]:
+    """Withdrawn, or superseded."""
+    told = frames.notices(heading, question, None, None)
+    newest = heading.newest
+    if newest is None or newest <= heading.edition.number:
+        return told
+    newer = Piece(
+        _("Edition {number}", number=newest), address(heading.collection.code, newest, question)
+    )
+    text = say.superseded(heading.edition.number, newer)
+    return (*told, Notice(_("A newer edition stands"), text))
+
+
+def _lead(found: Contents) -> tuple[Sentence, ...]:
+    """The newest figures of the first area, the whole."""
+    newest = found.newest
+    if newest is None:
+        return ()
+    area = newest.lines[0][0]
+    by_sex = [
+        (line[1], newest.estimate[at, 0]) for at, line in enumerate(newest.lines) if line[0] == area
+    ]
+    said = say.newest(found.holdings.name(area), newest.periods[0], by_sex)
+    return (said,) if said else ()
+
+
+def _choice(heading: Heading, held: Holdings) -> Choice:
+    """The first area, women first, newest year; against it ten years before, or the first year."""
+    last = held.periods[-1]
+    earlier = [period for period in held.periods if int(period) <= int(last) - APART]
+    sexes = tuple(sex for sex in ("f", "m", "p") if sex in held.sexes)
+    this = PopulationYear(held.areas[0].code, sexes[0], last)
+    return Choice(
+        action=f"/c/{heading.collection.code}/{heading.edition.number}/comparison",
+        areas=tuple((area.code, area.name or area.code) for area in held.areas),
+        sexes=tuple((sex, names.sex(sex)) for sex in sexes),
+        periods=tuple((period, period) for period in reversed(held.periods)),
+        this=this,
+        that=replace(this, period=earlier[-1] if earlier else held.periods[0]),
+    )
+
+
+def _questions(
+    heading: Heading, question: ContentsQuestion, held: Holdings, choice: Choice
+) -> tuple[Sentence, ...]:
+    """A first address of each view, with sensible choices."""
+    asked = (question.figures, question.settings)
+    trend = TrendQuestion(figures=question.figures, settings=question.settings).completed(
+        areas=[area.code for area in held.areas], sexes=held.sexes, periods=held.periods
+    )
+    this, that = choice.this, choice.that
+    population = PopulationYearQuestion(this, *asked)
+    comparison = ComparisonQuestion(this, that, DEFAULT_INDICATOR, *asked)
+    collection, number = heading.collection.code, heading.edition.number
+    return say.questions(
+        population=address(collection, number, population),
+        comparison=address(collection, number, comparison),
+        trend=address(collection, number, trend),
+        who=names.population(this.sex, held.name(this.area)),
+        area=held.name(this.area),
+        this=this.period,
+        that=that.period,
+    )
+
+
+def _standing(heading: Heading) -> Standing:
+    number = heading.edition.number
+    place = f"/c/{heading.collection.code}/{number}"
+    if heading.edition.withdrawn:
+        return Standing(
+            f"{place}/reinstate",
+            _("Reinstate edition {number}", number=number),
+            say.reinstating(),
+        )
+    return Standing(
+        f"{place}/withdraw", _("Withdraw edition {number}", number=number), say.withdrawing()
+    )

@@ -1,0 +1,113 @@
+"""The tables of a contents page: areas with their newest figures, and the collection's editions."""
+
+from collections.abc import Iterable
+from dataclasses import dataclass, field
+
+from engine import settings as named
+from engine.indicators import INDICATORS
+from server.exports.table import Cell, Column, Row, Table
+from server.exports.twin import Twin
+from server.pages import cells
+from server.results.contents import Contents
+from server.results.questions import PopulationYear, PopulationYearQuestion, address
+from server.results.series import Series
+from server.sentences import contents as say
+from server.sentences import names
+from server.sentences.dates import day
+from server.sentences.text import _
+from server.store.records import Collection, Edition
+
+
+@dataclass(frozen=True, slots=True)
+class Listing:
+    """A table with twins of its own, for what is no part of the page's figures."""
+
+    tables: tuple[Table, ...]
+    twins: dict[str, str] = field(default_factory=dict)
+
+
+def areas(found: Contents, newest: Series) -> Table:
+    """Life expectancy at birth by area and sex in the newest year."""
+    period, sexes = newest.periods[0], newest.question.sexes
+    heads = [Column("area", _("life expectancy at birth, {year}, years", year=period))]
+    for sex in sexes:
+        heads += cells.columns(sex, names.sex(sex), INDICATORS["e0"].unit.decimals)
+    width = len(sexes)
+    return Table(
+        "areas",
+        _("Life expectancy at birth in {year}, by area", year=period),
+        tuple(heads),
+        tuple(
+            _area(found, newest, at, range(at * width, at * width + width))
+            for at in range(len(found.holdings.areas))
+        ),
+        _("Under each figure its interval, which covers chance in deaths only."),
+    )
+
+
+def _area(found: Contents, newest: Series, at: int, lines: range) -> Row:
+    """One area; it leads to the first sex that is held."""
+    area, settings = found.holdings.areas[at], named.find(found.question.settings)
+    line: list[Cell] = [area.name or area.code]
+    for index in lines:
+        line += cells.triple(newest.estimate[index, 0], INDICATORS["e0"].unit, settings)
+    held = [index for index in lines if newest.status[index][0]]
+    return Row(
+        tuple(line),
+        provisional=any(newest.status[index][0] == "provisional" for index in held),
+        href=_address(found, newest, held[0]) if held else "",
+    )
+
+
+def _address(found: Contents, newest: Series, index: int) -> str:
+    of = PopulationYear(*newest.lines[index], newest.periods[0])
+    heading, asked = found.heading, found.question
+    return address(
+        heading.collection.code,
+        heading.edition.number,
+        PopulationYearQuestion(of, asked.figures, asked.settings),
+    )
+
+
+def listing(collection: Collection, all_: Iterable[Edition], newest: int | None) -> Listing:
+    """All editions of a collection, newest first. It changes as editions are made and withdrawn."""
+    twins = {twin: f"/c/{collection.code}/editions.{twin}" for twin in ("csv", "xlsx", "json")}
+    return Listing((_editions(collection, all_, newest),), twins)
+
+
+def twin(collection: Collection, all_: Iterable[Edition], newest: int | None) -> Twin:
+    """The same list as a file."""
+    table = _editions(collection, all_, newest)
+    about = ((_("Data owner"), collection.owner),)
+    return Twin(table.title, f"/c/{collection.code}/editions", about, (), (), (table,))
+
+
+def _editions(collection: Collection, all_: Iterable[Edition], newest: int | None) -> Table:
+    return Table(
+        "editions",
+        _("Editions of {collection}", collection=collection.name),
+        (
+            Column("edition", _("edition")),
+            Column("made", _("made")),
+            Column("by", _("by")),
+            Column("note", _("what it says")),
+            Column("standing", _("standing")),
+        ),
+        tuple(
+            Row(
+                (
+                    edition.number,
+                    day(edition.made),
+                    edition.by,
+                    edition.note,
+                    say.standing(
+                        stands=edition.number == newest,
+                        withdrawn=edition.events[-1].at if edition.withdrawn else None,
+                    ),
+                ),
+                href=f"/c/{collection.code}/{edition.number}/contents",
+            )
+            for edition in all_
+        ),
+        _("An edition never changes. Links keep showing the edition they name."),
+    )

@@ -1,0 +1,110 @@
+"""What is said of an edition as a whole: its span, its newest figures, its standing."""
+
+import datetime as dt
+import math
+from collections.abc import Sequence
+
+from engine.estimates import Estimate
+from engine.indicators import INDICATORS
+from server.sentences import names
+from server.sentences.dates import day
+from server.sentences.movements import shown
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.text import _, n_
+
+
+def answer(collection: str, number: int, periods: Sequence[str], areas: int) -> Sentence:
+    """What the edition holds, in one line."""
+    if not periods:
+        return phrase(
+            _("{collection}, edition {number}, holds nothing."),
+            collection=collection,
+            number=str(number),
+        )
+    return phrase(
+        _("{collection}, edition {number}: {span}, {areas}."),
+        collection=collection,
+        number=str(number),
+        span=span(periods),
+        areas=n_("one area", "{count} areas", areas),
+    )
+
+
+def span(periods: Sequence[str]) -> str:
+    """25 years, 1999 to 2023; the one year 2023."""
+    if len(periods) == 1:
+        return _("the one year {year}", year=periods[0])
+    return _(
+        "{count} years, {first} to {last}", count=len(periods), first=periods[0], last=periods[-1]
+    )
+
+
+def newest(area: str, period: str, by_sex: Sequence[tuple[str, Estimate]]) -> Sentence:
+    """Life expectancy of the first area in its newest year; empty where there is none."""
+    unit = INDICATORS["e0"].unit
+    known = [(sex, one) for sex, one in by_sex if math.isfinite(float(one.value))]
+    if not known:
+        return ()
+    parts = [
+        _("{value} years for {sex}", value=shown(one, unit), sex=names.sex(sex))
+        for sex, one in known
+    ]
+    return phrase(
+        _("In {year} life expectancy at birth in {area} was {parts}."),
+        year=period,
+        area=area,
+        parts=names.listed(parts),
+    )
+
+
+def superseded(shown_: int, newer: Piece) -> Sentence:
+    """A newer edition stands."""
+    return phrase(
+        _("This page shows edition {shown} and will go on showing it. {newer} stands now."),
+        shown=str(shown_),
+        newer=newer,
+    )
+
+
+def standing(*, stands: bool, withdrawn: dt.date | None) -> str:
+    """Stands, superseded or withdrawn (and when); in the table of editions."""
+    if withdrawn is not None:
+        return _("withdrawn {day}", day=day(withdrawn))
+    return _("stands") if stands else _("superseded")
+
+
+def questions(
+    *, population: str, comparison: str, trend: str, who: str, area: str, this: str, that: str
+) -> tuple[Sentence, ...]:
+    """What may be asked next, each with the address of a first answer."""
+    return (
+        phrase(
+            _("{question} For example {who} in {year}."),
+            question=Piece(_("How long do people live here?"), population),
+            who=who,
+            year=this,
+        ),
+        phrase(
+            _("{question} For example {who} in {year} and in {before}."),
+            question=Piece(_("What lies between these two?"), comparison),
+            who=who,
+            year=this,
+            before=that,
+        ),
+        phrase(
+            _("{question} For example life expectancy at birth in {area}, all years."),
+            question=Piece(_("Which way is it going?"), trend),
+            area=area,
+        ),
+    )
+
+
+def withdrawing() -> str:
+    return _(
+        "Withdrawing takes nothing away: the figures can still be read at their addresses, with a "
+        "notice, and the edition before it stands again."
+    )
+
+
+def reinstating() -> str:
+    return _("Reinstating lets the edition stand again; that it was withdrawn stays on record.")

@@ -1,0 +1,79 @@
+"""How figures are made, as the registries state it."""
+
+from engine.indicator import Indicator
+from engine.settings import Settings
+from server.sentences.numbers import number, whole
+from server.sentences.text import _
+
+Facts = tuple[tuple[str, str], ...]  # a word, and what holds
+
+
+def indicator(one: Indicator) -> Facts:
+    """What an indicator is, how it is calculated and who says so."""
+    return (
+        (_("Definition"), _(one.definition)),
+        (_("Formula"), _(one.formula)),
+        (_("Unit"), _(one.unit.label)),
+        (_("Interval"), interval(one)),
+        (_("Needs"), needs(one)),
+        (_("Source"), _(one.source)),
+    )
+
+
+def interval(one: Indicator) -> str:
+    """Whether it is smooth, what follows from it, and why it is not where it is not."""
+    if one.smooth:
+        return _(
+            "Smooth: from its slope in every death rate (delta method), deaths taken as Poisson. "
+            "Differences are shared out over ages."
+        )
+    return _(
+        "Not smooth, so by simulation, deaths drawn as Poisson; differences are not shared out "
+        "over ages. {why}",
+        why=_(one.why_not_smooth),
+    )
+
+
+def needs(one: Indicator) -> str:
+    """What the counts must hold before it is given."""
+    wants = one.needs
+    parts = [_("enough person-years")]
+    parts += [_("an age group that begins at {age}", age=age) for age in wants.ages if age]
+    if wants.open_small:
+        parts.append(_("an open age group that few reach, or that a fitted law spreads"))
+    if wants.open_deaths:
+        parts.append(_("deaths in the open age group, or a fitted law"))
+    if wants.span_deaths:
+        parts.append(_("deaths within the span of ages of the settings"))
+    return "; ".join(parts)
+
+
+def settings(one: Settings) -> Facts:
+    """The stages of a chain in order, and its limits."""
+    stages = tuple((_(stage.name), _(stage.sentence)) for stage in one.stages)
+    return (*stages, (_("Limits"), limits(one)))
+
+
+def limits(one: Settings) -> str:
+    """From how many person-years on a figure is given, and the like."""
+    return _(
+        "No figure below {least} person-years, a caution below {few}. The spread of ages at death "
+        "is given where at most {share} % of those born reach the open age group. Intervals hold "
+        "{level} % of what chance does; where they are simulated, from {draws} draws. The rise of "
+        "death rates is read from {start} to {end}.",
+        least=whole(one.least_exposure),
+        few=whole(one.few_exposure),
+        share=number(100 * one.open_share, 0),
+        level=number(100 * one.level, 0),
+        draws=whole(one.draws),
+        start=one.ageing_span[0],
+        end=one.ageing_span[1],
+    )
+
+
+def severity(of_check: str) -> str:
+    """What a failed check means for the upload."""
+    return {
+        "error": _("must be put right"),
+        "warning": _("wants a second look"),
+    }[of_check]
