@@ -33,7 +33,7 @@ def slope(grid: AgeGrid, mx: Array, exposure: Array, span: tuple[int, int]) -> S
 
     Maximum likelihood for deaths mx * exposure given the person-years E. For a given b the level a
     has a closed form; what is left to solve is that the mean age at death observed equals the one
-    expected, sum E x exp(bx) / sum E exp(bx). The gradient follows by the implicit function theorem.
+    expected, sum E x exp(bx) / sum E exp(bx). The gradient is the implicit function theorem's.
 
     Shape:   mx, exposure [..., age] -> [...] and [..., age]; complex mx allowed.
     Missing: nan where deaths lie in fewer than two groups of the span, where it holds fewer than

@@ -129,7 +129,7 @@ def _settle(
             pull = deaths[:, left] - fitted + fitted * logs
             new = _solve(bands, _weighted(first, local, pull, size))
             found[:, left] = new
-            left = left[~(np.max(np.abs(new - old), axis=0) <= SETTLED)]
+            left = left[np.max(np.abs(new - old), axis=0) > SETTLED]  # nan rows stay nan
             if not left.size:
                 return found
     found[:, left] = np.nan

@@ -24,6 +24,7 @@ Codes = NDArray[np.str_]
 
 BLOCK = 2048  # simulated tables held in memory at once
 FAILED = 0.01  # share of simulated tables that may lack the number; beyond it, no interval
+CHANCE = "poisson deaths"  # purpose of the streams: every number is read off the same draws
 SAME = 1e-12  # of the two variances: what is left of a difference's is rounding
 
 
@@ -52,12 +53,11 @@ def estimate(
     if streams is None:
         return _without(value, reason, Reason.NOT_SIMULATED)
 
+    flat, names = _flat(panel), np.asarray(streams).ravel()
+
     def draw(where: slice) -> Array:
-        part = _flat(panel)[where]
-        deaths = poisson_draws(
-            part.deaths, streams.ravel()[where], settings.draws, "poisson deaths"
-        )
-        return _drawn(indicator, part, deaths, settings)
+        deaths = poisson_draws(flat.deaths[where], names[where], settings.draws, CHANCE)
+        return _drawn(indicator, flat[where], deaths, settings)
 
     return _simulated(indicator, value, reason, draw, settings)
 
@@ -104,29 +104,20 @@ def difference(
         return _normal(value, variance, reason, settings, nothing=nothing)
     if streams is None:
         return _without(value, reason, Reason.NOT_SIMULATED)
-    names = streams[0].ravel(), streams[1].ravel()
+    sides = _flat(this), _flat(that)
+    names = np.asarray(streams[0]).ravel(), np.asarray(streams[1]).ravel()
+    pairs = np.array(["\n".join(sorted(pair)) for pair in zip(*names, strict=True)], dtype=str)
+    common = both.reshape(len(pairs), -1)
 
     def draw(where: slice) -> Array:
-        sides = _flat(this)[where], _flat(that)[where]
-        common = both.reshape(-1, both.shape[-1])[where]
-        pairs = ["\n".join(sorted(pair)) for pair in zip(*(n[where] for n in names), strict=True)]
-        in_both = poisson_draws(common, np.array(pairs), settings.draws, "deaths in both")
-        one, two = (
-            _drawn(
-                indicator,
-                side,
-                in_both
-                + poisson_draws(
-                    np.maximum(side.deaths - common, 0),
-                    code[where],
-                    settings.draws,
-                    "poisson deaths",
-                ),
-                settings,
-            )
-            for side, code in zip(sides, names, strict=True)
-        )
-        return one - two
+        in_both = poisson_draws(common[where], pairs[where], settings.draws, "deaths in both")
+
+        def side(panel: Panel, codes: Codes) -> Array:
+            alone = np.maximum(panel.deaths - common, 0.0)[where]
+            deaths = in_both + poisson_draws(alone, codes[where], settings.draws, CHANCE)
+            return _drawn(indicator, panel[where], deaths, settings)
+
+        return side(sides[0], names[0]) - side(sides[1], names[1])
 
     return _simulated(indicator, value, reason, draw, settings)
 
@@ -168,9 +159,12 @@ def _without(value: Array, reason: NDArray[np.uint8], why: Reason) -> Estimate:
 
 def _flat(panel: Panel) -> Panel:
     """The same populations in one row."""
-    rows = int(np.prod(panel.batch_shape))
     names = ("deaths", "exposure", "infant_weight", "infant_ratio")
-    return replace(panel, **{name: getattr(panel, name).reshape(rows, -1) for name in names})
+    rows = int(np.prod(panel.batch_shape))
+    return replace(
+        panel,
+        **{name: (part := getattr(panel, name)).reshape(rows, part.shape[-1]) for name in names},
+    )
 
 
 def _drawn(indicator: Indicator, panel: Panel, deaths: Array, settings: Settings) -> Array:

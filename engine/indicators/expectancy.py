@@ -32,7 +32,7 @@ def at_age(age: int) -> Indicator:
             + " would go on to live on average if the death rates of the year held for the rest of"
             " their lives."
         ),
-        formula=f"e({age}) = T({age}) / l({age}), T({age}) the sum of L(x) over the ages from {age}",
+        formula=f"e({age}) = T({age}) / l({age}), T({age}) the sum of L(x) from {age} on",
         source="Preston, Heuveline & Guillot (2001), Demography, chapter 3",
         why_not_smooth="",
         needs=Needs(ages=(age,), open_deaths=True),

@@ -1,0 +1,88 @@
+"""The only maker of test data. Each part of the system has its section; keep them small."""
+
+import numpy as np
+from hypothesis import strategies as st
+from numpy.typing import ArrayLike, NDArray
+
+from engine.ages import AgeGrid, Array
+from engine.panel import Panel
+
+# ---- engine: panels -----------------------------------------------------------------------------
+
+GRIDS = {
+    "abridged": AgeGrid((0, 1, *range(5, 101, 5))),
+    "single": AgeGrid(tuple(range(101))),
+    "irregular": AgeGrid(
+        (0, 1, 3, 5, 12, 15, 25, 40, 45, 50, 60, 65, 70, 74, 80, 83, 85, 90, 95, 100)
+    ),
+}
+
+
+def gompertz_rates(
+    grid: AgeGrid,
+    *,
+    level: ArrayLike = 3e-5,
+    slope: ArrayLike = 0.1,
+    infant: ArrayLike = 0.005,
+    accidents: ArrayLike = 2e-4,
+) -> Array:
+    """Hazard at the middle of each group (of the open one 3 years in), with infant deaths.
+
+    The parameters broadcast and are the batch: [..., age].
+    """
+    level, slope, infant, accidents = (
+        np.asarray(part, float)[..., None] for part in (level, slope, infant, accidents)
+    )
+    mids = np.append(grid.mids[:-1], grid.open_age + 3.0)
+    starts = np.array(grid.starts, float)
+    child = infant * np.where(starts == 0, 1.0, 0.06 * (starts < 5))
+    return np.asarray(level * np.exp(slope * mids) + accidents + child)
+
+
+def gompertz_panel(
+    grid: AgeGrid = GRIDS["abridged"],
+    *,
+    people: float = 500_000,
+    sex: str = "f",
+    seed: int | None = None,
+    **law: ArrayLike,
+) -> Panel:
+    """Populations under a Gompertz-Makeham law: expected deaths, or, with a seed, drawn ones."""
+    mx = gompertz_rates(grid, **law)
+    widths = np.append(grid.widths[:-1], 4.0)
+    ends = np.cumsum(mx * widths, axis=-1)
+    years = widths * np.exp(-(ends - mx * widths / 2))
+    exposure = people * years / years.sum(axis=-1, keepdims=True)
+    deaths = mx * exposure
+    if seed is not None:
+        deaths = np.random.default_rng(seed).poisson(deaths).astype(float)
+    return Panel.of(grid, deaths, exposure, sex=sex)
+
+
+def persons_panel(grid: AgeGrid = GRIDS["abridged"], *, seed: int | None = None) -> Panel:
+    """Women and men together, men with the higher rates."""
+    women = gompertz_panel(grid, sex="f", seed=seed, level=2e-5, infant=0.004)
+    men = gompertz_panel(grid, sex="m", seed=None if seed is None else seed + 1, infant=0.006)
+    return Panel.persons(women, men)
+
+
+def codes(panel: Panel, name: str = "isle") -> NDArray[np.str_]:
+    """A code for each population of a batch."""
+    numbers = np.arange(int(np.prod(panel.batch_shape))).reshape(panel.batch_shape)
+    return np.char.add(f"{name}.", numbers.astype(str))
+
+
+@st.composite
+def panels(draw: st.DrawFn, batch: int = 4) -> Panel:
+    """A batch of drawn populations on one of the grids, small or large, of low or high mortality."""
+    shares = st.lists(st.floats(0, 1), min_size=batch, max_size=batch).map(np.array)
+    slope = 0.08 + 0.04 * draw(shares)
+    return gompertz_panel(
+        draw(st.sampled_from(list(GRIDS.values()))),
+        people=draw(st.floats(30_000, 3_000_000)),
+        sex=draw(st.sampled_from(("f", "m", "p"))),
+        seed=draw(st.integers(0, 2**31)),
+        slope=slope,
+        level=0.1 / np.exp(82 * slope),
+        infant=0.002 + 0.15 * draw(shares),
+    )
