@@ -1,0 +1,167 @@
+"""The stories planted in the demonstration collection are found by the product itself."""
+
+import datetime as dt
+import itertools
+from collections.abc import Iterator
+from pathlib import Path
+
+import numpy as np
+import pytest
+from sqlalchemy.orm import Session
+
+from engine.estimates import Estimate, Reason
+from seed_scenarios import quillmere
+from seed_scenarios.quillmere_counts import REGIONS, WHOLE
+from server.results.loading import PopulationYear, load
+from server.results.questions import TrendQuestion
+from server.results.series import series
+from server.store import editions, schedules
+from server.store.connect import make_engine, sessions
+from server.store.heading import heading
+from server.store.migrating import migrate
+
+NOW = dt.datetime(2026, 12, 1, 9, tzinfo=dt.UTC)
+YEARS = range(1999, 2024)
+
+
+def built(folder: Path) -> Iterator[Session]:
+    url = f"sqlite:///{folder / 'ebbline.db'}"
+    migrate(url)
+    engine = make_engine(url)
+    with sessions(engine)() as opened:
+        quillmere.build(opened, now=NOW)
+        yield opened
+    engine.dispose()
+
+
+@pytest.fixture(scope="module")
+def island(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Session]:
+    yield from built(tmp_path_factory.mktemp("island"))
+
+
+def trend(
+    session: Session, area: str, sex: str, of: str = "e0", settings: str = "almanac-1"
+) -> Estimate:
+    """One indicator of one area and sex in edition 2, [year] from 1999."""
+    asked = [("of", of), ("area", area), ("sex", sex), ("settings", settings)]
+    question = TrendQuestion.parse([*asked, ("from", "1999"), ("to", "2023")])
+    return series(session, heading(session, quillmere.CODE, 2), question).estimate[0]
+
+
+def in_year(figures: Estimate, year: int) -> float:
+    return float(figures.value[year - 1999])
+
+
+def gain(figures: Estimate, first: int, last: int) -> float:
+    return in_year(figures, last) - in_year(figures, first)
+
+
+def test_two_editions_with_their_notes(island: Session) -> None:
+    second, first = editions.listing(island, quillmere.CODE)
+    assert (first.number, second.number, second.base) == (1, 2, 1)
+    assert first.note.startswith("First delivery")
+    assert second.note == "Revision of 2021 in Northlade: deaths under inquest, left out at first."
+
+
+def test_building_again_gives_the_same_editions(island: Session, tmp_path: Path) -> None:
+    again = next(built(tmp_path))
+    digests = [edition.digest for edition in editions.listing(again, quillmere.CODE)]
+    assert digests == [edition.digest for edition in editions.listing(island, quillmere.CODE)]
+    assert digests[0] != digests[1]
+
+
+def test_only_2023_is_provisional(island: Session) -> None:
+    status = schedules.contents(island, quillmere.CODE, 2).status
+    assert len(status) == 7 * 3 * 25
+    assert {period for (_, _, period), word in status.items() if word == "provisional"} == {"2023"}
+
+
+def test_the_whole_and_persons_are_sums(island: Session) -> None:
+    codes = [*(region.code for region in REGIONS), WHOLE.code]
+    asked = [PopulationYear(code, sex, "2012") for code in codes for sex in ("f", "m", "p")]
+    held = load(island, quillmere.CODE, 2, asked)
+    total = {
+        (one.area, one.sex): (loaded.panel.deaths.sum(), loaded.panel.exposure.sum(), loaded.births)
+        for one, loaded in held.items()
+    }
+    for sex in ("f", "m", "p"):
+        parts = [total[region.code, sex] for region in REGIONS]
+        assert total[WHOLE.code, sex] == tuple(map(sum, zip(*parts, strict=True)))
+    for code in codes:
+        both = zip(total[code, "f"], total[code, "m"], strict=True)
+        assert total[code, "p"] == tuple(map(sum, both))
+
+
+@pytest.mark.parametrize(("sex", "begin", "end"), [("f", 80, 84), ("m", 75, 79.5)])
+def test_length_of_life_grows(island: Session, sex: str, begin: float, end: float) -> None:
+    whole = trend(island, WHOLE.code, sex)
+    assert in_year(whole, 1999) == pytest.approx(begin, abs=0.5)
+    assert in_year(whole, 2022) == pytest.approx(end, abs=0.5)
+
+
+def test_men_of_tollbay_stand_still_while_others_gain(island: Session) -> None:
+    stalled = trend(island, "tollbay", "m")
+    others = [
+        gain(trend(island, area, "m"), 2008, 2017)
+        for area in ("northlade", "harrowfen", "stonereach", "elderwick")
+    ]
+    assert gain(stalled, 2008, 2017) < 0.5
+    assert min(others) > 1.2
+    assert gain(trend(island, "tollbay", "f"), 2008, 2017) > 0.8
+    working = trend(island, "tollbay", "m", "45q15")
+    assert in_year(working, 2017) > 1.15 * in_year(working, 2008)
+
+
+@pytest.mark.parametrize("sex", ["f", "m"])
+def test_the_hot_summer_shows_at_old_ages_most_in_elderwick(island: Session, sex: str) -> None:
+    def dip(area: str) -> float:
+        figures = trend(island, area, sex, "e65")
+        return (in_year(figures, 2017) + in_year(figures, 2019)) / 2 - in_year(figures, 2018)
+
+    assert dip("elderwick") > 2 * dip(WHOLE.code) > 0.4
+    gains = np.diff(trend(island, WHOLE.code, sex, "e65").value)
+    assert np.argmin(gains) == 2018 - 2000
+
+
+def test_infants_of_harrowfen_gain(island: Session) -> None:
+    for sex in ("f", "m"):
+        there = trend(island, "harrowfen", sex, "5q0")
+        before, after = there.value[:7].mean(), there.value[14:].mean()
+        assert before > 1.8 * trend(island, "northlade", sex, "5q0").value[:7].mean()
+        assert after < 0.45 * before
+        assert there.high[14:].mean() < there.low[:7].mean()
+
+
+def test_the_figures_of_little_auk_jump_by_chance(island: Session) -> None:
+    for sex in ("f", "m"):
+        small, whole = trend(island, "little-auk", sex), trend(island, WHOLE.code, sex)
+        assert np.all(np.isfinite(small.value))
+        wide, narrow = (figures.high - figures.low for figures in (small, whole))
+        assert wide.min() > 8 * narrow.max()
+        assert np.abs(np.diff(small.value)).max() > 2
+        inside = (small.low <= whole.value) & (whole.value <= small.high)
+        assert inside.sum() >= 21  # its interval nearly always holds the whole's figure
+
+
+def test_what_ages_closed_at_85_cost(island: Session) -> None:
+    plain = trend(island, "stonereach", "f", "H")
+    assert set(plain.reason.tolist()) == {Reason.OPEN_GROUP_TOO_LARGE}
+    fitted = trend(island, "stonereach", "f", "H", "almanac-1-kannisto")
+    assert np.all(np.isfinite(fitted.value))
+    assert np.all(np.isfinite(trend(island, WHOLE.code, "f", "H").value))
+
+
+def test_the_revision_moves_one_region_and_the_whole_in_one_year(island: Session) -> None:
+    moved = set()
+    asked = [
+        PopulationYear(code, sex, str(year))
+        for code in (*(region.code for region in REGIONS), WHOLE.code)
+        for sex, year in itertools.product(("f", "m"), YEARS)
+    ]
+    first, second = (load(island, quillmere.CODE, number, asked) for number in (1, 2))
+    for one in asked:
+        before, after = first[one].panel.deaths, second[one].panel.deaths
+        if not np.array_equal(before, after):
+            assert after.sum() > before.sum()
+            moved.add((one.area, one.period))
+    assert moved == {("northlade", "2021"), (WHOLE.code, "2021")}
