@@ -1,0 +1,143 @@
+"""Totals of sexes and areas, summed when an upload is committed."""
+
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass, replace
+from functools import reduce
+
+from engine.ages import AgeGrid
+from server.store.areas import in_tree_order
+from server.store.errors import Refused
+from server.store.records import Area, Key, Vector
+
+Cells = Mapping[Key, Vector]
+Slice = tuple[str, str, str, str]  # sex, period, measure, cause: what is summed over areas
+
+
+@dataclass(frozen=True, slots=True)
+class Totalled:
+    cells: dict[Key, Vector]  # handed in or summed
+    ended: frozenset[Key]  # sums of the base that can no longer be made
+
+
+def merged(areas: Iterable[Area], into: Iterable[Area]) -> tuple[Area, ...]:
+    """Areas of an upload laid over those of the base, in tree order.
+
+    An upload that says nothing of an area's whole leaves it where it was, and what was declared as
+    delivered stays so; only a replacing upload can take either back.
+    Raises: Refused where they form no tree.
+    """
+    together = {area.code: area for area in into}
+    for area in areas:
+        before = together.get(area.code, area)
+        together[area.code] = replace(
+            area,
+            parent=area.parent or before.parent,
+            delivered=area.delivered or before.delivered,
+        )
+    return in_tree_order(together.values())
+
+
+def periods_needed(
+    handed: Cells, areas: Iterable[Area], base_areas: Iterable[Area]
+) -> tuple[str, ...] | None:
+    """Periods of the base that the totals rest on; None: all, since the tree has changed."""
+
+    def tree(of: Iterable[Area]) -> set[tuple[str, str, bool]]:
+        return {(area.code, area.parent, area.delivered) for area in of}
+
+    if tree(areas) != tree(base_areas):
+        return None
+    return tuple(sorted({key.period for key in handed}))
+
+
+def totalled(
+    handed: Cells, areas: tuple[Area, ...], *, base: Cells, base_areas: tuple[Area, ...] = ()
+) -> Totalled:
+    """What was handed in, laid over the base, with its totals.
+
+    Persons are women and men together, unless persons were handed in. An area that has parts and
+    is not delivered is the sum of all its parts on their common age groups, or not available where
+    a part is missing; what was handed in for it only served the checks. A sum is provisional where
+    a part of it is.
+
+    `areas` are those of the new edition in tree order; `base` holds the periods needed.
+    Raises: ValueError where a schedule is of no known area; Refused where counts were handed in
+    for an area that has parts, is not delivered, and cannot be summed.
+    """
+    unknown = {key.area for key in handed} - {area.code for area in areas}
+    if unknown:
+        raise ValueError(f"schedules of areas that are not listed: {sorted(unknown)}")
+    parts, summed = _parts(areas), _summed(areas)
+    sums_before = {key for key in base if key.area in summed | _summed(base_areas)}
+    own = {key: cell for key, cell in handed.items() if key.area not in summed}
+    standing = {key: cell for key, cell in base.items() if key not in sums_before} | own
+    made = _persons(own, standing)
+    standing.update(made)
+    by_area: dict[str, dict[Slice, Vector]] = {}
+    for key, cell in standing.items():
+        by_area.setdefault(key.area, {})[_slice(key)] = cell
+    for whole in reversed(areas):  # parts before their whole
+        if whole.code in summed:
+            sums = _sums([by_area.get(part, {}) for part in parts[whole.code]])
+            by_area[whole.code] = sums
+            made.update(
+                (Key(whole.code, sex, period, measure, cause), cell)
+                for (sex, period, measure, cause), cell in sums.items()
+            )
+    cells = own | made
+    lost = sorted(key for key in handed if key not in cells)
+    if lost:
+        raise Refused(
+            "Counts were handed in for {area} in {period}, which is summed from its parts, but "
+            "not every part has {measure} for that year. Hand in the missing parts, or declare "
+            "{area} as delivered.",
+            area=lost[0].area,
+            period=lost[0].period,
+            measure=lost[0].measure,
+        )
+    return Totalled(cells, frozenset(sums_before - cells.keys()))
+
+
+def total(cells: list[Vector]) -> Vector:
+    """The sum on the common age groups; provisional where one part is."""
+    grid = reduce(AgeGrid.common, (cell.grid for cell in cells))
+    values = cells[0].grid.regroup(cells[0].values, grid)
+    for cell in cells[1:]:
+        values = values + cell.grid.regroup(cell.values, grid)
+    status = "provisional" if any(cell.status == "provisional" for cell in cells) else "final"
+    return Vector(status, grid, values)
+
+
+def _persons(own: Cells, standing: Cells) -> dict[Key, Vector]:
+    """Persons anew wherever women or men were handed in without persons."""
+    made: dict[Key, Vector] = {}
+    for key in own:
+        persons = replace(key, sex="p")
+        if persons in own or persons in made:
+            continue
+        women, men = (standing.get(replace(key, sex=sex)) for sex in ("f", "m"))
+        if women and men:
+            made[persons] = total([women, men])
+    return made
+
+
+def _sums(parts: list[dict[Slice, Vector]]) -> dict[Slice, Vector]:
+    shared = set.intersection(*(set(part) for part in parts))
+    return {which: total([part[which] for part in parts]) for which in sorted(shared)}
+
+
+def _parts(areas: Iterable[Area]) -> dict[str, list[str]]:
+    """Codes of the parts of each area, in code order."""
+    parts: dict[str, list[str]] = {}
+    for area in sorted(areas, key=lambda area: area.code):
+        parts.setdefault(area.parent, []).append(area.code)
+    return parts
+
+
+def _summed(areas: tuple[Area, ...]) -> set[str]:
+    parts = _parts(areas)
+    return {area.code for area in areas if area.code in parts and not area.delivered}
+
+
+def _slice(key: Key) -> Slice:
+    return (key.sex, key.period, key.measure, key.cause)
