@@ -67,7 +67,7 @@ def build(session: Session, heading: Heading, question: ContentsQuestion) -> Con
     return ContentsPage(
         frame=_frame(heading, question),
         answer=say.answer(collection.name, edition.number, held.periods, len(held.areas)),
-        lead=_lead(found),
+        lead=lead(found),
         tables=(contents_tables.areas(found, found.newest),) if found.newest else (),
         twins=frames.twins(heading, question) if found.newest else {},
         questions=_questions(heading, question, held, choice) if choice else (),
@@ -106,7 +106,7 @@ def _notices(heading: Heading, question: ContentsQuestion) -> tuple[Notice, ...]
     return (*told, Notice(_("A newer edition stands"), text))
 
 
-def _lead(found: Contents) -> tuple[Sentence, ...]:
+def lead(found: Contents) -> tuple[Sentence, ...]:
     """The newest figures of the first area, the whole."""
     newest = found.newest
     if newest is None:

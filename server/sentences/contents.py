@@ -22,12 +22,18 @@ def answer(collection: str, number: int, periods: Sequence[str], areas: int) -> 
             number=str(number),
         )
     return phrase(
-        _("{collection}, edition {number}: {span}, {areas}."),
+        _("{collection}, edition {number}: {holds}."),
         collection=collection,
         number=str(number),
-        span=span(periods),
-        areas=n_("one area", "{count} areas", areas),
+        holds=holds(periods, areas),
     )
+
+
+def holds(periods: Sequence[str], areas: int) -> str:
+    """25 years, 1999 to 2023, 7 areas."""
+    if not periods:
+        return _("nothing")
+    return _("{span}, {areas}", span=span(periods), areas=n_("one area", "{count} areas", areas))
 
 
 def span(periods: Sequence[str]) -> str:

@@ -1,0 +1,43 @@
+"""What is said of collections in a row."""
+
+import datetime as dt
+
+from server.sentences.dates import day
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.text import _, n_
+
+
+def answer(count: int, standing: int) -> Sentence:
+    """How many there are; `standing` of them have an edition that stands."""
+    if not count:
+        return phrase(_("There is no collection yet. {begin}"), begin=Piece(_("Begin here."), "/"))
+    if count == standing:
+        return phrase(n_("One collection can be read.", "{count} collections can be read.", count))
+    return phrase(
+        n_(
+            "There is one collection; {standing} can be read.",
+            "There are {count} collections; {standing} can be read.",
+            count,
+            standing=standing or _("none of them"),
+        )
+    )
+
+
+def edition(number: int, made: dt.date, note: str) -> str:
+    """The edition that stands, and what its makers say of it."""
+    if note:
+        return _(
+            "Edition {number} stands, made on {day}: {note}",
+            number=number,
+            day=day(made),
+            note=note,
+        )
+    return _("Edition {number} stands, made on {day}.", number=number, day=day(made))
+
+
+def nothing_stands(code: str) -> Sentence:
+    return phrase(
+        _("No edition of it stands. {upload} to make one, or see {drafts}."),
+        upload=Piece(_("Upload files"), f"/uploads/new?collection={code}"),
+        drafts=Piece(_("what has been uploaded"), "/uploads"),
+    )
