@@ -1,0 +1,151 @@
+"""The rows of a sheet as numbers: which area, sex, year and age each one is of."""
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import pandas as pd
+from numpy.typing import NDArray
+
+from engine.panel import SEXES
+from server.intake.areas import code_of, is_code
+from server.intake.labels import ALL_AGES, Age, read_age, read_sex, read_status, read_year
+from server.intake.mapping import Mapping
+from server.intake.sheets import Labels, Sheet
+
+UNREADABLE = -1
+TOTAL = -2  # age of a row that is a total over the ages
+Ints = NDArray[np.int64]
+Flags = NDArray[np.bool_]
+
+
+@dataclass(frozen=True, slots=True)
+class Cells:
+    """One number for each row and matter; UNREADABLE where the text could not be read."""
+
+    sheet: Sheet
+    area: Ints  # into the codes of the whole upload
+    sex: Ints  # into SEXES
+    year: Ints
+    start: Ints  # first age of the group, or TOTAL
+    end: Ints  # last age, UNREADABLE where the label does not say
+    open: Flags
+    status: Ints  # 0 final, 1 provisional
+
+    @property
+    def placed(self) -> Flags:
+        """Rows whose area, sex and year are known."""
+        return (self.area >= 0) & (self.sex >= 0) & (self.year >= 0)
+
+    @property
+    def place(self) -> Ints:
+        """Area, sex and year in one number, in the order in which they are sorted."""
+        return place_of(self.area, self.sex, self.year)
+
+
+def place_of(area: Ints, sex: Ints, year: Ints) -> Ints:
+    return (area * len(SEXES) + sex) * 10_000 + year
+
+
+def parts_of(place: int) -> tuple[int, str, int]:
+    """Number of the area, sex and year of a place."""
+    rest, year = divmod(place, 10_000)
+    area, sex = divmod(rest, len(SEXES))
+    return area, SEXES[sex], year
+
+
+def codes_of(sheet: Sheet) -> list[str]:
+    """The code of each distinct text that tells the area, the one of a blank last.
+
+    '' where the text can be no code, or where another name gives the same code.
+    """
+    if labels := sheet.labels.get("area"):
+        return labels.read(lambda text: text if is_code(text) else "", "")
+    if labels := sheet.labels.get("area_name"):
+        made = [code_of(text) for text in labels.texts]
+        return [code if made.count(code) == 1 else "" for code in made] + [""]
+    return [only_code(sheet.mapping)]
+
+
+def only_code(mapping: Mapping) -> str:
+    """Code of the one area of a file without an area column; made from its name if need be."""
+    code = mapping.only_area or (code_of(mapping.only_area_name) if mapping.only_area_name else "")
+    return code if is_code(code) else ""
+
+
+def whole_code(mapping: Mapping) -> str:
+    """Code of the area of which the others are parts; '' where there is none."""
+    return mapping.whole or (code_of(mapping.whole_name) if mapping.whole_name else "")
+
+
+def names_of(sheet: Sheet, codes: list[str]) -> dict[str, list[str]]:
+    """Names that the file gives to each code, in the order of their first rows."""
+    names = sheet.labels.get("area_name")
+    if names is None:
+        name = sheet.mapping.only_area_name
+        return {codes[0]: [name]} if name and "area" not in sheet.labels else {}
+    areas = sheet.labels.get("area", names)
+    names_before = len(names.texts) + 1
+    pairs = pd.unique((areas.codes.astype(np.int64) + 1) * names_before + names.codes + 1)
+    found: dict[str, list[str]] = {}
+    for area, name in zip(*divmod(pairs, names_before), strict=True):
+        code = codes[area - 1]
+        if code and name:
+            found.setdefault(code, []).append(names.texts[name - 1])
+    return found
+
+
+def cells(sheet: Sheet, codes: Sequence[str]) -> Cells:
+    """Read the labels of a sheet; `codes` are the area codes of the whole upload, in order."""
+    mapping, labels = sheet.mapping, sheet.labels
+    known = {code: place for place, code in enumerate(codes)}
+    ages = _ages(labels.get("age"))
+
+    def sex(text: str) -> int:
+        found = read_sex(text, mapping.sex_codes)
+        return SEXES.index(found) if found in SEXES else UNREADABLE
+
+    def year(text: str) -> int:
+        return read_year(text) or UNREADABLE
+
+    def provisional(text: str) -> int:
+        return int(str(read_year(text)) in mapping.provisional_years)
+
+    def status(text: str) -> int:
+        found = read_status(text)
+        return UNREADABLE if found is None else int(found == "provisional")
+
+    def rows(read: list[int], field: str) -> Ints:
+        return _spread(read, labels.get(field), len(sheet))
+
+    def read(field: str, meaning: Callable[[str], int], without: int) -> Ints:
+        column = labels.get(field)
+        return rows(column.read(meaning, UNREADABLE) if column else [without], field)
+
+    return Cells(
+        sheet=sheet,
+        area=rows(
+            [known.get(code, UNREADABLE) for code in codes_of(sheet)],
+            "area" if "area" in labels else "area_name",
+        ),
+        sex=read("sex", sex, SEXES.index(mapping.only_sex or "p")),
+        year=read("year", year, UNREADABLE),
+        start=rows([TOTAL if age is ALL_AGES else age.start for age in ages], "age"),
+        end=rows([UNREADABLE if age.end is None else age.end for age in ages], "age"),
+        open=rows([int(age.open) for age in ages], "age").astype(bool),
+        status=read("status", status, 0) | read("year", provisional, 0),
+    )
+
+
+def _ages(labels: Labels | None) -> list[Age]:
+    """Groups of the distinct labels; without a column of ages (births) one group of all."""
+    unreadable = Age(UNREADABLE)
+    if labels is None:
+        return [Age(0, open=True)]
+    return labels.read(lambda text: read_age(text) or unreadable, unreadable)
+
+
+def _spread(read: list[int], labels: Labels | None, rows: int) -> Ints:
+    """Meanings of the distinct texts on all rows; without labels the one meaning on each."""
+    meanings = np.array(read, np.int64)
+    return meanings[labels.codes] if labels else np.full(rows, meanings[0])

@@ -1,0 +1,88 @@
+"""What an entry of the registry of checks is."""
+
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass, replace
+from typing import Generic, TypeVar
+
+import numpy as np
+import pandas as pd
+from numpy.typing import NDArray
+
+from server.intake.problems import Fault, Kind, Problem
+
+Subject = TypeVar("Subject")
+LISTED = 20  # different values listed one by one; what follows is gathered in one more line
+
+
+@dataclass(frozen=True, slots=True)
+class Marks:
+    """Rows that fail a check, and what is found in them."""
+
+    column: str
+    failing: NDArray[np.bool_]  # [row]
+    found: dict[str, NDArray[np.object_]]  # texts of the failing rows, by their name in the kind
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Check(Kind, Generic[Subject]):
+    """A check of a whole: yields its faults."""
+
+    find: Callable[[Subject], Iterable[Fault]]
+
+    def problems(self, subject: Subject, file: str) -> list[Problem]:
+        return [Problem.of(self, file, fault) for fault in listed(self.find(subject))]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RowCheck(Kind, Generic[Subject]):
+    """A check of rows: marks those that fail. Rows that share what was found share a problem."""
+
+    mark: Callable[[Subject], Iterable[Marks]]
+
+    def problems(self, marks: Marks, rows: NDArray[np.int64], file: str) -> list[Problem]:
+        """`rows` are the row numbers in the file of all rows marked over."""
+        return [Problem.of(self, file, fault) for fault in gathered(marks, rows[marks.failing])]
+
+
+def listed(faults: Iterable[Fault]) -> list[Fault]:
+    """The first LISTED faults and, of the rest, one that counts them."""
+    kept = list(faults)
+    if len(kept) <= LISTED + 1:
+        return kept
+    first, rest = kept[LISTED], kept[LISTED:]
+    rows = [row for fault in rest for row in (fault.row, fault.last_row) if row is not None]
+    return [
+        *kept[:LISTED],
+        replace(
+            first,
+            last_row=max(rows, default=None),
+            rows=sum(fault.rows for fault in rest),
+            others=len(rest) - 1,
+        ),
+    ]
+
+
+def gathered(marks: Marks, rows: NDArray[np.int64]) -> list[Fault]:
+    """Faults by what was found, in the order of their first rows; at most LISTED and one more."""
+    if not len(rows):
+        return []
+    table = pd.DataFrame({"row": rows, **marks.found})
+    names = list(marks.found)
+    table = table.sort_values("row", kind="stable")
+    if names:
+        groups = table.groupby(names, sort=False, dropna=False)["row"].agg(["min", "max", "size"])
+        values = [key if isinstance(key, tuple) else (key,) for key in groups.index]
+    else:
+        groups = table["row"].agg(["min", "max", "size"]).to_frame().T
+        values = [()]
+    limits = groups.to_numpy(int)
+    return listed(
+        Fault(
+            column=marks.column,
+            row=int(first),
+            last_row=int(last),
+            rows=int(count),
+            values=dict(zip(names, found, strict=True)),
+        )
+        for (first, last, count), found in zip(limits, values, strict=True)
+    )

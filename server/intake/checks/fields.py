@@ -1,0 +1,195 @@
+"""Checks of single fields: can it be read, and can it be true."""
+
+import re
+from collections.abc import Callable, Iterator
+
+import numpy as np
+
+from server.intake.cells import UNREADABLE, Cells, Flags
+from server.intake.checks.check import Marks, RowCheck
+from server.intake.sheets import Numbers
+
+MOST = 1e12  # a count above is a slip of the pen
+_THOUSANDS = re.compile(r"[+-]?\d{1,3}(?:[,.' \u00a0\u202f]\d{3})+")
+_DECIMAL_COMMA = re.compile(r"[+-]?\d+,\d+")
+
+
+def _label_marks(cells: Cells, field: str, failing: Flags) -> Iterator[Marks]:
+    if failing.any() and field in cells.sheet.labels:
+        column = cells.sheet.mapping.column(field)
+        yield Marks(column, failing, {"text": cells.sheet.labels[field].at(failing)})
+
+
+def _unreadable(field: str, matter: str) -> Callable[[Cells], Iterator[Marks]]:
+    return lambda cells: _label_marks(cells, field, getattr(cells, matter) == UNREADABLE)
+
+
+def _area_code(cells: Cells) -> Iterator[Marks]:
+    yield from _label_marks(cells, "area", cells.area == UNREADABLE)
+
+
+def _area_name(cells: Cells, *, blank: bool) -> Iterator[Marks]:
+    labels = cells.sheet.labels
+    if "area" not in labels and "area_name" in labels:
+        failing = (cells.area == UNREADABLE) & ((labels["area_name"].codes < 0) == blank)
+        yield from _label_marks(cells, "area_name", failing)
+
+
+def _number_marks(
+    cells: Cells, fails: Callable[[Numbers], Flags], *, told: bool = True
+) -> Iterator[Marks]:
+    for field, numbers in cells.sheet.numbers.items():
+        failing = fails(numbers)
+        if failing.any():
+            found = {"text": numbers.at(failing)} if told else {}
+            yield Marks(cells.sheet.mapping.column(field), failing, found)
+
+
+def _texts_that(test: Callable[[str], bool]) -> Callable[[Cells], Iterator[Marks]]:
+    def fails(numbers: Numbers) -> Flags:
+        if numbers.texts is None:
+            return np.zeros(len(numbers.values), bool)
+        failing = np.array(numbers.texts.read(test, False), bool)
+        return failing[numbers.texts.codes] & np.isnan(numbers.values)
+
+    return lambda cells: _number_marks(cells, fails)
+
+
+def _thousands(text: str) -> bool:
+    return _THOUSANDS.fullmatch(text) is not None
+
+
+def _decimal_comma(text: str) -> bool:
+    return _DECIMAL_COMMA.fullmatch(text) is not None and not _thousands(text)
+
+
+def _no_number(text: str) -> bool:
+    return not _thousands(text) and not _decimal_comma(text)
+
+
+def _blank(numbers: Numbers) -> Flags:
+    if numbers.texts is None:
+        return np.isnan(numbers.values)
+    return numbers.texts.codes < 0
+
+
+CHECKS: tuple[RowCheck[Cells], ...] = (
+    RowCheck(
+        key="unreadable_year",
+        severity="error",
+        meaning="A year is not a calendar year.",
+        found="“{text}”",
+        expected="a calendar year of four digits",
+        remedy="Write the year as 2014.",
+        mark=_unreadable("year", "year"),
+    ),
+    RowCheck(
+        key="unknown_sex",
+        severity="error",
+        meaning="A word or code for the sex is not known.",
+        found="“{text}”",
+        expected="f, m or p (female, male, persons)",
+        remedy="Give one row for each sex, or say in the mapping what the code means.",
+        mark=_unreadable("sex", "sex"),
+    ),
+    RowCheck(
+        key="unreadable_age",
+        severity="error",
+        meaning="An age group cannot be read.",
+        found="“{text}”",
+        expected="an age group such as 0, 1–4, 85+",
+        remedy="Write the group by its ages; deaths of unknown age must be shared out or left out "
+        "before the upload.",
+        mark=_unreadable("age", "start"),
+    ),
+    RowCheck(
+        key="unreadable_area_code",
+        severity="error",
+        meaning="A code of an area has signs that no address can carry.",
+        found="“{text}”",
+        expected="1 to 32 letters A–Z, digits, full stops, hyphens or underscores",
+        remedy="Change the code, or say in the mapping that the column holds names.",
+        mark=_area_code,
+    ),
+    RowCheck(
+        key="missing_area_name",
+        severity="error",
+        meaning="A row does not say which area it is of.",
+        found="an empty field",
+        expected="the name of an area",
+        remedy="Fill in the name, or take the row out.",
+        mark=lambda cells: _area_name(cells, blank=True),
+    ),
+    RowCheck(
+        key="area_names_share_code",
+        severity="error",
+        meaning="Codes are made from names, and two names give the same code.",
+        found="“{text}”",
+        expected="names that differ in letters or digits within their first 32 signs",
+        remedy="Add a column of area codes to the file.",
+        mark=lambda cells: _area_name(cells, blank=False),
+    ),
+    RowCheck(
+        key="unknown_status",
+        severity="error",
+        meaning="A row says neither provisional nor final.",
+        found="“{text}”",
+        expected="final or provisional (f or p)",
+        remedy="Write one of the two, or take the column out of the mapping.",
+        mark=_unreadable("status", "status"),
+    ),
+    RowCheck(
+        key="thousands_separator",
+        severity="error",
+        meaning="A number has a mark between its thousands, which may be taken for a decimal mark.",
+        found="“{text}”",
+        expected="a number of at least 0 without a mark between thousands",
+        remedy="Remove the thousands separator.",
+        mark=_texts_that(_thousands),
+    ),
+    RowCheck(
+        key="decimal_comma",
+        severity="error",
+        meaning="A number has a comma for its decimal mark.",
+        found="“{text}”",
+        expected="a number without comma",
+        remedy="Write a full stop for the comma, or a whole number if counts are whole.",
+        mark=_texts_that(_decimal_comma),
+    ),
+    RowCheck(
+        key="not_a_number",
+        severity="error",
+        meaning="There is text where a number belongs.",
+        found="“{text}”",
+        expected="a number of at least 0",
+        remedy="Write the count as plain digits; 0 where there was none.",
+        mark=_texts_that(_no_number),
+    ),
+    RowCheck(
+        key="missing_count",
+        severity="error",
+        meaning="A count is missing. Missing is not the same as none.",
+        found="an empty field",
+        expected="a number of at least 0",
+        remedy="Fill in the count; write 0 where there was none.",
+        mark=lambda cells: _number_marks(cells, _blank, told=False),
+    ),
+    RowCheck(
+        key="negative_count",
+        severity="error",
+        meaning="A count is below zero.",
+        found="{text}",
+        expected="a number of at least 0",
+        remedy="Put the count right; corrections of earlier years belong to those years.",
+        mark=lambda cells: _number_marks(cells, lambda numbers: numbers.values < 0),
+    ),
+    RowCheck(
+        key="not_finite",
+        severity="error",
+        meaning="A count is infinite or beyond any population.",
+        found="{text}",
+        expected="a number below a million million",
+        remedy="Put the count right.",
+        mark=lambda cells: _number_marks(cells, lambda numbers: numbers.values >= MOST),
+    ),
+)

@@ -1,0 +1,189 @@
+"""Checks of a file as such: is it a table of text at all."""
+
+from collections import Counter
+from collections.abc import Iterator
+
+import numpy as np
+
+from server.intake.checks.check import LISTED, Check
+from server.intake.layout import Layout
+from server.intake.problems import Fault, Problem
+
+MOST_ROWS = 3_000_000
+MOST_COLUMNS = 200
+SPREADSHEETS = {b"PK\x03\x04": "a zipped spreadsheet", b"\xd0\xcf\x11\xe0": "an old spreadsheet"}
+
+
+def _foreign(file: Layout) -> str:
+    """What the file is instead of text; empty where it may be text."""
+    for start, what in SPREADSHEETS.items():
+        if file.content.startswith(start):
+            return what
+    return "bytes of value 0, which no text has" if b"\0" in file.content else ""
+
+
+def _not_text(file: Layout) -> Iterator[Fault]:
+    if what := _foreign(file):
+        yield Fault(values={"what": what})
+
+
+def _not_utf8(file: Layout) -> Iterator[Fault]:
+    try:
+        file.content.decode()
+    except UnicodeDecodeError as error:
+        row = file.content.count(b"\n", 0, error.start) + 1
+        yield Fault(row=row, values={"byte": f"0x{file.content[error.start]:02x}"})
+
+
+def _empty(file: Layout) -> Iterator[Fault]:
+    if not file.content.strip():
+        yield Fault()
+
+
+def _no_rows(file: Layout) -> Iterator[Fault]:
+    if not file.row_count:
+        yield Fault(row=1)
+
+
+def _stray_quote(file: Layout) -> Iterator[Fault]:
+    if file.stray:
+        yield Fault(row=file.stray)
+
+
+def _blank_heading(file: Layout) -> Iterator[Fault]:
+    blank = [place for place, column in enumerate(file.columns, 1) if not column]
+    if blank or not file.columns:
+        yield Fault(row=1, values={"place": blank[0] if blank else 1})
+
+
+def _doubled_heading(file: Layout) -> Iterator[Fault]:
+    for column, count in list(Counter(file.columns).items())[:MOST_COLUMNS]:
+        if column and count > 1:
+            yield Fault(column, row=1, values={"count": count})
+
+
+def _too_many_columns(file: Layout) -> Iterator[Fault]:
+    if len(file.columns) > MOST_COLUMNS:
+        yield Fault(row=1, values={"count": len(file.columns), "most": MOST_COLUMNS})
+
+
+def _too_many_rows(file: Layout) -> Iterator[Fault]:
+    if file.row_count > MOST_ROWS:
+        yield Fault(values={"count": file.row_count, "most": MOST_ROWS})
+
+
+def _uneven_rows(file: Layout) -> Iterator[Fault]:
+    if file.stray:
+        return
+    wrong = np.flatnonzero((file.fields != len(file.columns)) & (file.fields != 0))
+    counts = file.fields[wrong]
+    for count in list(dict.fromkeys(counts.tolist()))[:LISTED]:
+        lines = wrong[counts == count]
+        rows = (int(lines[0]) + 2, int(lines[-1]) + 2, len(lines))
+        yield Fault("", *rows, values={"count": count, "columns": len(file.columns)})
+
+
+CHECKS: tuple[Check[Layout], ...] = (
+    Check(
+        key="not_text",
+        severity="error",
+        meaning="The file is not a table of text.",
+        found="{what}",
+        expected="a CSV file: lines of text, fields between commas, semicolons or tabs",
+        remedy="Save the table as CSV with the encoding UTF-8 and upload that file.",
+        find=_not_text,
+    ),
+    Check(
+        key="not_utf8",
+        severity="error",
+        meaning="The letters of the file are stored in an encoding other than UTF-8.",
+        found="the byte {byte}",
+        expected="text in the encoding UTF-8",
+        remedy="Save the file again as CSV with the encoding UTF-8.",
+        find=_not_utf8,
+    ),
+    Check(
+        key="empty_file",
+        severity="error",
+        meaning="There is nothing in the file.",
+        found="an empty file",
+        expected="a heading and one row for each area, sex, year and age",
+        remedy="Upload the file that holds the counts; the templates show the form.",
+        find=_empty,
+    ),
+    Check(
+        key="no_rows",
+        severity="error",
+        meaning="The file has a heading and nothing below it.",
+        found="no row below the heading",
+        expected="one row for each area, sex, year and age",
+        remedy="Add the rows, or upload the file that holds them.",
+        find=_no_rows,
+    ),
+    Check(
+        key="stray_quote",
+        severity="error",
+        meaning="A quotation mark stands inside a field or has no partner, so that it is not known "
+        "where the field ends.",
+        found="a quotation mark that neither opens nor ends a field",
+        expected="quotation marks in pairs round whole fields",
+        remedy="Take the mark out; where it belongs to the text, double it and quote the field.",
+        find=_stray_quote,
+    ),
+    Check(
+        key="blank_heading",
+        severity="error",
+        meaning="A column has no name.",
+        found="no name over column {place}",
+        expected="a name over every column, in the first row",
+        remedy="Name the column, or take it out.",
+        find=_blank_heading,
+    ),
+    Check(
+        key="doubled_heading",
+        severity="error",
+        meaning="Two columns have the same name, so that it is not known which is meant.",
+        found="this name over {count} columns",
+        expected="a name of its own over each column",
+        remedy="Rename or take out all but one of them.",
+        find=_doubled_heading,
+    ),
+    Check(
+        key="too_many_columns",
+        severity="error",
+        meaning="The file is wider than any table in long form.",
+        found="{count} columns",
+        expected="at most {most}",
+        remedy="Give the table in long form: one row for each area, sex, year and age.",
+        find=_too_many_columns,
+    ),
+    Check(
+        key="too_many_rows",
+        severity="error",
+        meaning="The file is longer than one upload may be.",
+        found="{count} rows",
+        expected="at most {most}",
+        remedy="Split the file by years and upload the parts one after the other.",
+        find=_too_many_rows,
+    ),
+    Check(
+        key="uneven_rows",
+        severity="error",
+        meaning="Rows have more or fewer fields than the heading, so that numbers may stand in "
+        "the wrong column.",
+        found="this many fields: {count}",
+        expected="as many as in the heading: {columns}",
+        remedy="Look for a delimiter inside a number or a name; take it out or put the field in "
+        "quotation marks.",
+        find=_uneven_rows,
+    ),
+)
+KINDS = {check.key: check for check in CHECKS}
+
+
+def problems_of(file: Layout) -> list[Problem]:
+    """All that is wrong with the file as a table of text; of what is no text, only that."""
+    for only in ("not_text", "empty_file"):
+        if problems := KINDS[only].problems(file, file.name):
+            return problems
+    return [problem for check in CHECKS for problem in check.problems(file, file.name)]

@@ -1,0 +1,82 @@
+"""What the columns of a file mean, and what the file does not say itself."""
+
+import json
+from dataclasses import asdict, dataclass, fields
+
+# fields of a mapping that name a column of the file
+COLUMNS = (
+    "year",
+    "sex",
+    "age",
+    "area",
+    "area_name",
+    "deaths",
+    "population",
+    "births",
+    "status",
+)
+
+# which numbers a file of each role must carry
+ROLES: dict[str, tuple[str, ...]] = {
+    "counts": ("deaths", "population"),
+    "deaths": ("deaths",),
+    "population": ("population",),
+    "births": ("births",),
+}
+
+
+@dataclass(frozen=True, slots=True)
+class Mapping:
+    """How one file is to be read. Empty text: not given."""
+
+    # names of columns in the file
+    year: str = ""
+    sex: str = ""
+    age: str = ""
+    area: str = ""  # column of area codes
+    area_name: str = ""  # column of names; without a column of codes, codes are made from them
+    deaths: str = ""
+    population: str = ""
+    births: str = ""
+    status: str = ""  # column that says provisional or final
+
+    # what stands in no column
+    only_area: str = ""  # code of the one area of a file without an area column
+    only_area_name: str = ""
+    only_sex: str = ""  # f, m or p of a file without a sex column
+    whole: str = ""  # code of the area that all others are parts of
+    whole_name: str = ""
+    delivered: tuple[str, ...] = ()  # codes of areas kept as delivered, not summed from their parts
+    sex_codes: tuple[tuple[str, str], ...] = ()  # text in the file and f, m or p
+    last_age_open: bool = False  # the last age of each series is open though it is not marked
+    provisional_years: tuple[str, ...] = ()
+
+    def to_json(self) -> str:
+        """Canonical: the same mapping always gives the same text."""
+        return json.dumps(asdict(self), sort_keys=True, ensure_ascii=False, separators=(",", ":"))
+
+    @classmethod
+    def from_json(cls, text: str) -> "Mapping":
+        """Raises: ValueError where a field is unknown or has the wrong shape."""
+        stored = json.loads(text)
+        if not isinstance(stored, dict):
+            raise ValueError(f"a mapping is an object of named fields; found {text[:40]!r}")
+        known = {field.name: field.default for field in fields(cls)}
+        for name, value in stored.items():
+            if name not in known:
+                raise ValueError(
+                    f"{name!r} is no field of a mapping; the fields are {', '.join(known)}"
+                )
+            if isinstance(known[name], tuple):
+                stored[name] = tuple(
+                    tuple(part) if isinstance(part, list) else part for part in value
+                )
+            elif type(value) is not type(known[name]):
+                raise ValueError(
+                    f"mapping field {name} is {value!r}; expected {type(known[name]).__name__}"
+                )
+        return cls(**stored)
+
+    def column(self, field: str) -> str:
+        """Name of the column mapped to this field; empty where there is none."""
+        return str(getattr(self, field))

@@ -1,0 +1,160 @@
+"""What intake found wrong: where, what was found, what was expected, what to do.
+
+The texts of a problem are texts of the catalogue with their {values} beside them, so that a page can
+put them into its reader's language; in plain English they are `found`, `expected` and `remedy`.
+"""
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field
+from typing import Literal, Protocol, cast
+
+Severity = Literal["error", "warning"]
+Value = str | int | float
+
+
+class Translate(Protocol):
+    """The catalogue's own function, or `plain`."""
+
+    def __call__(self, text: str, /, **values: object) -> str: ...
+
+
+def plain(text: str, /, **values: object) -> str:
+    """The English text with its {names} filled in."""
+    return text.format(**values) if values else text
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Kind:
+    """One entry of the registry of checks: what kind of problem it finds."""
+
+    key: str
+    severity: Severity
+    meaning: str  # one sentence for the page that explains the checks
+    found: str  # texts of a problem, filled from its values
+    expected: str
+    remedy: str
+    source: str = ""  # where the rule is published
+
+
+@dataclass(frozen=True, slots=True)
+class Fault:
+    """A place where a check failed; with its kind and file it becomes a problem."""
+
+    column: str = ""
+    row: int | None = None  # as in the file, the heading being row 1
+    last_row: int | None = None
+    rows: int = 1  # how many rows share it
+    others: int = 0  # further different values gathered under this one
+    values: Mapping[str, Value] = field(default_factory=dict)
+
+
+@dataclass(frozen=True, slots=True)
+class Texts:
+    found: str
+    expected: str
+    remedy: str
+
+
+@dataclass(frozen=True, slots=True)
+class Problem:
+    """One thing to put right (error) or to look at again (warning)."""
+
+    key: str
+    severity: Severity
+    file: str
+    row: int | None
+    last_row: int | None
+    column: str
+    rows: int
+    others: int
+    texts: Texts
+    values: Mapping[str, Value]
+
+    @classmethod
+    def of(cls, kind: Kind, file: str, fault: Fault) -> "Problem":
+        texts = Texts(kind.found, kind.expected, kind.remedy)
+        where = (fault.row, fault.last_row, fault.column, fault.rows, fault.others)
+        return cls(kind.key, kind.severity, file, *where, texts, dict(fault.values))
+
+    def worded(
+        self, translate: Translate = plain, show: Callable[[int | float], str] = str
+    ) -> Texts:
+        """Found, expected and remedy in the reader's language; `show` prints the numbers."""
+        values = {k: v if isinstance(v, str) else show(v) for k, v in self.values.items()}
+        found = translate(self.texts.found, **values)
+        if self.others:
+            found = translate(
+                "{found} and {count} other values", found=found, count=show(self.others)
+            )
+        return Texts(
+            found,
+            translate(self.texts.expected, **values),
+            translate(self.texts.remedy, **values),
+        )
+
+    def rows_worded(
+        self, translate: Translate = plain, show: Callable[[int | float], str] = str
+    ) -> str:
+        """"212", "418 to 430" or "9 rows between 12 and 301"; empty where no row is to blame."""
+        if self.row is None:
+            return ""
+        if self.last_row is None or self.last_row == self.row:
+            return show(self.row)
+        ends = {"first": show(self.row), "last": show(self.last_row)}
+        if self.rows == self.last_row - self.row + 1:
+            return translate("{first} to {last}", **ends)
+        return translate("{count} rows between {first} and {last}", count=show(self.rows), **ends)
+
+    def sentence(
+        self, translate: Translate = plain, show: Callable[[int | float], str] = str
+    ) -> str:
+        """The whole problem in one line, as a terminal or an error page prints it."""
+        words = self.worded(translate, show)
+        place = [self.file]
+        if rows := self.rows_worded(translate, show):
+            place.append(translate("row {rows}", rows=rows))
+        if self.column:
+            place.append(translate("column {column}", column=self.column))
+        return translate(
+            "{place}: found {found}, expected {expected}. {remedy}",
+            place=", ".join(part for part in place if part),
+            found=words.found,
+            expected=words.expected,
+            remedy=words.remedy,
+        )
+
+    @property
+    def found(self) -> str:
+        return self.worded().found
+
+    @property
+    def expected(self) -> str:
+        return self.worded().expected
+
+    @property
+    def remedy(self) -> str:
+        return self.worded().remedy
+
+    def __str__(self) -> str:
+        return self.sentence()
+
+    def to_json(self) -> dict[str, object]:
+        """Self-contained, so that an old report reads the same when the checks have changed."""
+        return {
+            "key": self.key,
+            "severity": self.severity,
+            "file": self.file,
+            "row": self.row,
+            "last_row": self.last_row,
+            "column": self.column,
+            "rows": self.rows,
+            "others": self.others,
+            "texts": [self.texts.found, self.texts.expected, self.texts.remedy],
+            "values": dict(self.values),
+        }
+
+    @classmethod
+    def from_json(cls, stored: Mapping[str, object]) -> "Problem":
+        fields = dict(stored)
+        fields["texts"] = Texts(*cast(list[str], fields["texts"]))
+        return cls(**fields)  # type: ignore[arg-type]

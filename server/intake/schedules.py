@@ -1,0 +1,143 @@
+"""Rows put in order of area, sex, year and age, and cut into vectors over age."""
+
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from engine.ages import AgeGrid, Array
+from server.intake.cells import Cells, Flags, Ints
+
+MEASURES = {"deaths": "deaths", "population": "person_years", "births": "births"}
+DECIMALS = 6  # counts are rounded to them
+
+
+@dataclass(frozen=True, slots=True)
+class Ordered:
+    """The rows of a sheet that have a place and an age, by place and age. All arrays are [row]."""
+
+    cells: Cells
+    take: Ints  # which rows of the sheet
+    place: Ints
+    start: Ints
+    end: Ints  # last age of the group as labelled, -1 where the label does not say
+    open: Flags
+    first: Flags  # first row of its place
+    last: Flags
+    broken: Flags  # its place has rows whose age cannot be read
+    parted: Flags  # rows of unknown place stand in the file between this row and the next
+
+    @property
+    def row(self) -> Ints:
+        return self.cells.sheet.row[self.take]
+
+    def label(self, rows: Flags | Ints) -> "np.ndarray[tuple[int], np.dtype[np.object_]]":
+        """Age labels of some of these rows as written; '' in a file without ages."""
+        labels = self.cells.sheet.labels.get("age")
+        return labels.at(self.take[rows]) if labels else np.full(len(self.take[rows]), "", object)
+
+
+@dataclass(frozen=True, slots=True)
+class Block:
+    """Vectors of one measure that share a grid, by place; all from one file."""
+
+    measure: str
+    file: str
+    column: str
+    grid: AgeGrid
+    place: Ints  # [line]
+    provisional: Flags  # [line]
+    values: Array  # [line, age]
+    row: Ints  # [line, age], row in the file
+
+    def pick(self, lines: Flags | Ints) -> "Block":
+        return replace(
+            self,
+            place=self.place[lines],
+            provisional=self.provisional[lines],
+            values=self.values[lines],
+            row=self.row[lines],
+        )
+
+    def regroup(self, to: AgeGrid) -> "Block":
+        """The same counts in fewer groups; a group's row is that of its first part."""
+        if to == self.grid:
+            return self
+        starts = [self.grid.position(start) for start in to.starts]
+        return replace(
+            self, grid=to, values=self.grid.regroup(self.values, to), row=self.row[:, starts]
+        )
+
+
+def ordered(cells: Cells, sound: Flags) -> Ordered:
+    """Rows with a place and an age; `sound` are the rows whose every label could be read."""
+    take = np.flatnonzero(sound & (cells.start >= 0))
+    place, start = cells.place[take], cells.start[take]
+    key = place * 256 + start
+    if np.any(key[1:] < key[:-1]):
+        order = np.argsort(key, kind="stable")
+        take, place, start = take[order], place[order], start[order]
+    change = place[1:] != place[:-1]
+    last = np.append(change, True)[: len(take)]
+    opened = cells.open[take]
+    if cells.sheet.mapping.last_age_open:
+        opened = opened | (last & (cells.end[take] < 0))
+    unread = cells.placed & ~sound
+    lost = np.cumsum(~cells.placed)
+    between = lost[np.roll(take, -1)] != lost[take] if len(take) else lost
+    return Ordered(
+        cells=cells,
+        take=take,
+        place=place,
+        start=start,
+        end=cells.end[take],
+        open=opened,
+        first=np.append(True, change)[: len(take)],
+        last=last,
+        broken=np.isin(place, cells.place[unread]) if unread.any() else np.zeros(len(take), bool),
+        parted=between,
+    )
+
+
+def blocks(rows: Ordered, spoiled: Ints) -> Iterator[Block]:
+    """Vectors of all places but the spoiled ones, a block for each measure and grid."""
+    if len(spoiled):
+        kept = ~np.isin(rows.place, spoiled)
+        take, place, start, first = (
+            part[kept] for part in (rows.take, rows.place, rows.start, rows.first)
+        )
+    else:
+        take, place, start, first = rows.take, rows.place, rows.start, rows.first
+    if not len(take):
+        return
+    sheet, begins = rows.cells.sheet, np.flatnonzero(first)
+    for starts, lines in _grids(start, begins):
+        cell = begins[lines][:, None] + np.arange(len(starts))
+        taken = take[cell]
+        provisional = (rows.cells.status[taken] == 1).any(axis=-1)
+        for field, numbers in sheet.numbers.items():
+            yield Block(
+                measure=MEASURES[field],
+                file=sheet.name,
+                column=sheet.mapping.column(field),
+                grid=AgeGrid(starts),
+                place=place[begins[lines]],
+                provisional=provisional,
+                values=np.round(numbers.values[taken], DECIMALS) + 0.0,
+                row=sheet.row[taken],
+            )
+
+
+def _grids(start: Ints, begins: Ints) -> Iterator[tuple[tuple[int, ...], Ints]]:
+    """Each grid found with the lines that have it: same length, same sum of weights, same starts."""
+    weights = np.random.default_rng(0).integers(1, 2**62, 256)
+    lengths = np.diff(np.append(begins, len(start)))
+    marks = np.add.reduceat(weights[start], begins) * 1024 + lengths
+    _, first, which = np.unique(marks, return_index=True, return_inverse=True)
+    for number in np.argsort(first):
+        lines = np.flatnonzero(which == number)
+        starts = start[begins[lines[0]] : begins[lines[0]] + lengths[lines[0]]]
+        alike = start[begins[lines][:, None] + np.arange(len(starts))] == starts
+        if not alike.all():
+            raise AssertionError("two grids have the same mark")
+        yield tuple(starts.tolist()), lines
