@@ -11,11 +11,15 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from numpy.typing import NDArray
+
 from engine.ages import Array
+
+Places = NDArray[np.intp]
 
 PENALTIES = 10.0 ** np.arange(-1.0, 6.5, 0.5)  # from the nearly unsmoothed to a straight line
 STEPS = 60  # of Fisher scoring; rows that settle leave earlier, 4 to 8 are usual
-SETTLED = 1e-9  # largest change of a log rate in the last step
+SETTLED = 1e-7  # a step so short is the last: the next would be about its square
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,14 +34,13 @@ class Basis:
     def size(self) -> int:
         return self.segments + 3
 
-    def at(self, ages: Array) -> tuple[Array, Array]:
-        """First of the four splines that are not 0 at each age, and the four values:
-        [point] -> [point] whole numbers, [point, 4]."""
+    def at(self, ages: Array) -> tuple[Places, Array]:
+        """First of the four splines that are not 0 at each age [point], and the four [point, 4]."""
         place = (np.asarray(ages) - self.low) * self.segments / (self.high - self.low)
         first = np.clip(np.floor(place), 0, self.segments - 1)
         u = place - first
         values = ((1 - u) ** 3, 3 * u**3 - 6 * u**2 + 4, 3 * (u + u**2 - u**3) + 1, u**3)
-        return first.astype(int), np.stack(values, axis=-1) / 6
+        return first.astype(np.intp), np.stack(values, axis=-1) / 6
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,21 +77,89 @@ def fit(
     Missing: nan in, nan out; an age with exposure of 0 has no weight; no deaths at all gives nan.
     """
     batch = deaths.shape[:-1]
-    first, local = basis.at(ages)
-    counts, years = _rows(deaths), _rows(np.broadcast_to(exposure, deaths.shape))
-    if start is not None:
-        weight = np.broadcast_to(start.penalty, batch).reshape(-1)
-        begin = _rows(np.broadcast_to(start.coefficients, (*batch, basis.size)))
-        found = _settle(first, local, counts, years, weight, begin)
-        return Curve(basis, found.T.reshape(*batch, basis.size), weight.reshape(batch))
-    many = len(PENALTIES)
-    weight = np.tile(PENALTIES, counts.shape[1])
-    counts, years = np.repeat(counts, many, axis=1), np.repeat(years, many, axis=1)
-    found = _settle(first, local, counts, years, weight, _start(first, local, counts, years))
-    score = _criterion(first, local, counts, years, weight, found).reshape(-1, many)
-    best = np.argmin(np.where(np.isnan(score), np.inf, score), axis=1)
-    chosen = np.arange(len(best)) * many + best
-    return Curve(basis, found[:, chosen].T.reshape(*batch, -1), weight[chosen].reshape(batch))
+    rows = _Rows(*basis.at(ages), _rows(deaths), _rows(np.broadcast_to(exposure, deaths.shape)))
+    with np.errstate(all="ignore"):  # rows that cannot be fitted end as nan
+        if start is not None:
+            penalty = np.broadcast_to(start.penalty, batch).reshape(-1)
+            begin = _rows(np.broadcast_to(start.coefficients, (*batch, basis.size)))
+            found = rows.settle(penalty, begin)
+        else:
+            many = len(PENALTIES)  # each row is fitted once with every penalty
+            tiled = np.tile(PENALTIES, rows.deaths.shape[1])
+            rows = rows.take(np.repeat(np.arange(rows.deaths.shape[1]), many))
+            tried = rows.settle(tiled, rows.begin(basis.size))
+            score = rows.criterion(tiled, tried).reshape(-1, many)
+            best = np.argmin(np.where(np.isnan(score), np.inf, score), axis=1)
+            chosen = np.arange(len(best)) * many + best
+            found, penalty = tried[:, chosen], tiled[chosen]
+    return Curve(basis, found.T.reshape(*batch, basis.size), penalty.reshape(batch))
+
+
+@dataclass(frozen=True, slots=True)
+class _Rows:
+    """Counts to fit, and where their ages stand on the basis."""
+
+    first: Places
+    local: Array  # [age, 4]
+    deaths: Array  # [age, row]
+    exposure: Array
+
+    def take(self, rows: Places) -> "_Rows":
+        return _Rows(self.first, self.local, self.deaths[:, rows], self.exposure[:, rows])
+
+    def begin(self, size: int) -> Array:
+        """Coefficients of a first smooth through the crude log rates, half a death added."""
+        overall = self.deaths.sum(axis=0) / self.exposure.sum(axis=0)
+        logs = np.log((self.deaths + 0.5) / (self.exposure + 0.5 / overall))
+        fitted = self.exposure * np.exp(logs)
+        bands = self._bands(fitted, size) + _penalty(size, np.ones(1))
+        return _solve(bands, self._weighted(fitted * logs, size))
+
+    def settle(self, penalty: Array, begin: Array) -> Array:
+        """Fisher scoring until each row's log rates stand still: [coefficient, row]."""
+        found, size = begin.copy(), len(begin)
+        left = np.arange(found.shape[1])
+        for _ in range(STEPS):
+            rows, old = self.take(left), found[:, left]
+            logs = _evaluate(self.first, self.local, old)
+            fitted = rows.exposure * np.exp(logs)
+            bands = self._bands(fitted, size) + _penalty(size, penalty[left])
+            new = _solve(bands, self._weighted(rows.deaths - fitted + fitted * logs, size))
+            found[:, left] = new
+            left = left[np.max(np.abs(new - old), axis=0) > SETTLED]  # nan rows stay nan
+            if not left.size:
+                return found
+        found[:, left] = np.nan
+        return found
+
+    def criterion(self, penalty: Array, found: Array) -> Array:
+        """Bayesian information criterion of fitted rows: [row]."""
+        size, deaths = len(found), self.deaths
+        fitted = self.exposure * np.exp(_evaluate(self.first, self.local, found))
+        logs = np.where(deaths > 0, np.log(deaths / fitted), 0.0)
+        deviance = 2 * (deaths * logs - deaths + fitted).sum(axis=0)
+        rough = _penalty(size, penalty)
+        full = np.zeros((size, size, len(penalty)))
+        for d in range(3):
+            for k in range(size - d):
+                full[k, k + d] = full[k + d, k] = rough[d, k]
+        removed = np.trace(_solve(self._bands(fitted, size) + rough, full))
+        return np.asarray(deviance + np.log((self.exposure > 0).sum(axis=0)) * (size - removed))
+
+    def _bands(self, weight: Array, size: int) -> Array:
+        """Diagonals of sum_x w_x B_x B_x': [4, coefficient, row], [d, k] is that of (k, k + d)."""
+        bands = np.zeros((4, size, weight.shape[1]))
+        for k, splines, w in zip(self.first, self.local, weight, strict=True):
+            for d in range(4):
+                bands[d, k : k + 4 - d] += (splines[: 4 - d] * splines[d:])[:, None] * w
+        return bands
+
+    def _weighted(self, values: Array, size: int) -> Array:
+        """sum_x B_x v_x: [coefficient, row]."""
+        total = np.zeros((size, values.shape[1]))
+        for k, splines, v in zip(self.first, self.local, values, strict=True):
+            total[k : k + 4] += splines[:, None] * v
+        return total
 
 
 def _rows(array: Array) -> Array:
@@ -96,81 +167,11 @@ def _rows(array: Array) -> Array:
     return np.ascontiguousarray(array.reshape(-1, array.shape[-1]).T)
 
 
-def _evaluate(first: Array, local: Array, coefficients: Array) -> Array:
+def _evaluate(first: Places, local: Array, coefficients: Array) -> Array:
     value: Array = local[:, 0, None] * coefficients[first]
     for i in (1, 2, 3):
         value += local[:, i, None] * coefficients[first + i]
     return value
-
-
-def _start(first: Array, local: Array, deaths: Array, exposure: Array) -> Array:
-    """Coefficients of a first smooth through the crude log rates, half a death added to each."""
-    with np.errstate(all="ignore"):
-        overall = deaths.sum(axis=0) / exposure.sum(axis=0)
-        logs = np.log((deaths + 0.5) / (exposure + 0.5 / overall))
-        fitted = exposure * np.exp(logs)
-    size = first[-1] + 4
-    bands = _bands(first, local, fitted, size) + _penalty(size, np.ones(1))
-    return _solve(bands, _weighted(first, local, fitted * logs, size))
-
-
-def _settle(
-    first: Array, local: Array, deaths: Array, exposure: Array, weight: Array, begin: Array
-) -> Array:
-    """Fisher scoring until each row's log rates stand still: [coefficient, row]."""
-    found = begin.copy()
-    left = np.arange(found.shape[1])
-    with np.errstate(all="ignore"):
-        for _ in range(STEPS):
-            old, size = found[:, left], len(found)
-            logs = _evaluate(first, local, old)
-            fitted = exposure[:, left] * np.exp(logs)
-            bands = _bands(first, local, fitted, size) + _penalty(size, weight[left])
-            pull = deaths[:, left] - fitted + fitted * logs
-            new = _solve(bands, _weighted(first, local, pull, size))
-            found[:, left] = new
-            left = left[np.max(np.abs(new - old), axis=0) > SETTLED]  # nan rows stay nan
-            if not left.size:
-                return found
-    found[:, left] = np.nan
-    return found
-
-
-def _criterion(
-    first: Array, local: Array, deaths: Array, exposure: Array, weight: Array, found: Array
-) -> Array:
-    """Bayesian information criterion of fitted rows: [row]."""
-    size = len(found)
-    with np.errstate(all="ignore"):
-        fitted = exposure * np.exp(_evaluate(first, local, found))
-        logs = np.where(deaths > 0, np.log(deaths / fitted), 0.0)
-        deviance: Array = 2 * (deaths * logs - deaths + fitted).sum(axis=0)
-        rough = _penalty(size, weight)
-        bands = _bands(first, local, fitted, size) + rough
-        full = np.zeros((size, size, len(weight)))  # the penalty as a full matrix, column by column
-        for d in range(4):
-            for k in range(size - d):
-                full[k, k + d] = full[k + d, k] = rough[d, k]
-        removed = np.trace(_solve(bands, full))
-        deviance += np.log((exposure > 0).sum(axis=0)) * (size - removed)
-        return deviance
-
-
-def _bands(first: Array, local: Array, weight: Array, size: int) -> Array:
-    """Diagonals of sum_x w_x B_x B_x': [4, coefficient, row], [d, k] standing for (k, k + d)."""
-    bands = np.zeros((4, size, weight.shape[1]))
-    for x, k in enumerate(first):
-        for d in range(4):
-            bands[d, k : k + 4 - d] += (local[x, : 4 - d] * local[x, d:])[:, None] * weight[x]
-    return bands
-
-
-def _weighted(first: Array, local: Array, values: Array, size: int) -> Array:
-    """sum_x B_x v_x: [coefficient, row]."""
-    total = np.zeros((size, values.shape[1]))
-    for x, k in enumerate(first):
-        total[k : k + 4] += local[x][:, None] * values[x]
-    return total
 
 
 def _penalty(size: int, weight: Array) -> Array:

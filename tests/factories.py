@@ -74,7 +74,7 @@ def codes(panel: Panel, name: str = "isle") -> NDArray[np.str_]:
 
 @st.composite
 def panels(draw: st.DrawFn, batch: int = 4) -> Panel:
-    """A batch of drawn populations on one of the grids, small or large, of low or high mortality."""
+    """A batch of drawn populations on one of the grids, small or large, short-lived or long."""
     shares = st.lists(st.floats(0, 1), min_size=batch, max_size=batch).map(np.array)
     slope = 0.08 + 0.04 * draw(shares)
     return gompertz_panel(

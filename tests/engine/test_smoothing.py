@@ -72,10 +72,10 @@ def test_a_started_fit_keeps_the_penalty_and_does_not_depend_on_the_start() -> N
 
 def test_a_heavy_penalty_leaves_a_straight_line() -> None:
     deaths, years = counts(accidents=0.0)
-    heavy = Curve(BASIS, np.full(BASIS.size, -3.0), np.array(1e12))
+    heavy = Curve(BASIS, np.full(BASIS.size, -3.0), np.array(1e7))
     curve = fit(BASIS, AGES, deaths, years, start=heavy)
     bend = np.diff(curve.log_rates(np.arange(10.0, 100.0)), 2)
-    assert np.abs(bend).max() < 1e-6
+    assert np.abs(bend).max() < 2e-5
 
 
 def test_the_total_of_deaths_is_kept() -> None:
@@ -108,3 +108,12 @@ def test_an_age_without_person_years_has_no_weight() -> None:
     kept = np.arange(len(AGES)) != 6
     without = fit(BASIS, AGES[kept], deaths[kept], years[kept])
     np.testing.assert_allclose(curve.log_rates(AGES), without.log_rates(AGES), atol=1e-9)
+
+
+def test_a_wide_last_group_leaves_the_last_spline_to_the_penalty() -> None:
+    ages = np.array([12.5, 20.0, 35.0, 50.0, 65.0, 77.5, 90.0])
+    years = np.full(7, 1e5)
+    deaths = years * 3e-5 * np.exp(0.1 * ages)
+    curve = fit(BASIS, ages, deaths, years)
+    np.testing.assert_allclose(curve.log_rates(ages), np.log(3e-5) + 0.1 * ages, atol=1e-6)
+    assert curve.log_rates(np.array([100.0])) == pytest.approx(np.log(3e-5) + 10, abs=1e-4)
