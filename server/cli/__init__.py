@@ -7,7 +7,7 @@ from dataclasses import replace
 from pathlib import Path
 
 from server.cli import database, demo, editions, figure, hand_in, rebuild, serve
-from server.cli.refusals import REFUSALS, Refused
+from server.cli.refusals import REFUSALS, exit_code, sentence
 from server.config import Config
 from server.sentences.text import _, speaking
 
@@ -44,8 +44,8 @@ def main(arguments: Sequence[str] | None = None) -> int:
         try:
             return int(asked.run(asked, _with_options(config, asked)))
         except REFUSALS as error:
-            print(f"ebbline: {error}", file=sys.stderr)
-            return error.exit_code if isinstance(error, Refused) else 2
+            print(f"ebbline: {sentence(error)}", file=sys.stderr)
+            return exit_code(error)
 
 
 def _with_options(config: Config, asked: argparse.Namespace) -> Config:

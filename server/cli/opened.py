@@ -3,7 +3,7 @@
 from collections.abc import Iterator
 from contextlib import contextmanager
 
-from server.cli.refusals import Refused
+from server.cli.refusals import Declined
 from server.config import Config
 from server.sentences.text import _
 from server.store.connect import Session, make_engine, sessions
@@ -14,12 +14,12 @@ def require_head(config: Config) -> None:
     """Refuse where the database is not in the shape this version needs."""
     state = schema_state(make_engine(config.url))
     if state == "empty":
-        raise Refused(
+        raise Declined(
             _("There is no database yet at {url}. Make it: ebbline database", url=config.url),
             exit_code=1,
         )
     if state != "head":
-        raise Refused(
+        raise Declined(
             _(
                 "The database at {url} was made by another version. Bring it up to date: ebbline "
                 "database",

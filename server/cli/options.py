@@ -49,10 +49,10 @@ def add_port(command: argparse.ArgumentParser) -> None:
     )
 
 
-def add_edition(command: argparse.ArgumentParser) -> None:
+def add_note(command: argparse.ArgumentParser) -> None:
     command.add_argument(
-        "--collection", required=True, metavar=_("CODE"), help=_("code of the collection")
-    )
-    command.add_argument(
-        "--edition", type=int, metavar=_("NUMBER"), help=_("number of the edition")
+        "--note",
+        default="",
+        metavar=_("SENTENCE"),
+        help=_("why; it stands on the pages of the edition"),
     )

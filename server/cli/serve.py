@@ -8,7 +8,7 @@ import uvicorn
 from server.app import create_app
 from server.cli.opened import require_head
 from server.cli.options import Commands, add_command, add_port
-from server.cli.refusals import Refused
+from server.cli.refusals import Declined
 from server.config import Config
 from server.sentences.text import _
 
@@ -62,7 +62,7 @@ def require_port(config: Config) -> None:
         try:
             trial.bind((config.host, config.port))
         except OSError as error:
-            raise Refused(
+            raise Declined(
                 _(
                     "Port {port} on {host} cannot be had: another program holds it, or it is not "
                     "allowed. Stop that program, or choose another port: --port {other}",
