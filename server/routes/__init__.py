@@ -1,0 +1,5 @@
+"""All address families; the application takes each of ROUTERS."""
+
+from server.routes import population_year
+
+ROUTERS = (population_year.router,)

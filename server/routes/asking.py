@@ -4,15 +4,17 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from typing import Annotated, Any, Generic, TypeVar
 
-from fastapi import Depends, Request
+from fastapi import Depends, Request, Response
 
 from server.accounts.viewer import LOCAL, Right, Viewer
+from server.pages.page import Page
 from server.results.loading import NotInEdition
 from server.results.questions import CODE, BadValue, Question, address
 from server.sentences.text import _
 from server.store import collections, editions
 from server.store.connect import Session
 from server.store.heading import Heading, heading
+from server.web.render import respond
 
 READ = ["GET", "HEAD"]
 TWINS = ("csv", "xlsx", "json")
@@ -143,3 +145,19 @@ def newest(session: Session, collection: str) -> int:
             collection=name,
         )
     )
+
+
+def answer(request: Request, asked: Asked[Asks], build: Callable[[], Page]) -> Response:
+    """The page or its twin; `build` is called only where nobody holds the bytes yet."""
+    return respond(
+        request,
+        build,
+        tag_parts=state(asked.heading),
+        form=asked.twin or "html",
+        table=asked.table,
+    )
+
+
+def state(heading: Heading) -> tuple[object, ...]:
+    """All that can change a page pinned to an edition, beside its address and the build."""
+    return (heading.edition.digest, heading.collection.revision)

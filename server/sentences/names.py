@@ -37,6 +37,20 @@ def sex_and_year(code: str, period: str) -> str:
     return _("{sex} {year}", sex=sex(code), year=period)
 
 
+def inside(label: str) -> str:
+    """A label inside a sentence: its first letter small, unless it stands for itself.
+
+    >>> inside("Life expectancy at 65"), inside("H, unevenness")
+    ('life expectancy at 65', 'H, unevenness')
+    """
+    return label[:1].lower() + label[1:] if label[1:2].islower() else label
+
+
+def first_capital(text: str) -> str:
+    """At the head of a sentence."""
+    return text[:1].upper() + text[1:]
+
+
 def listed(parts: Sequence[str], *, most: int = 40) -> str:
     """Names in a row; beyond `most` only how many more there are.
 

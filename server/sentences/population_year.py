@@ -3,8 +3,9 @@
 import math
 from collections.abc import Mapping
 
-from engine.estimates import Estimate
+from engine.estimates import Estimate, Reason
 from engine.indicators import INDICATORS
+from engine.settings import Settings
 from server.sentences import names
 from server.sentences.movements import (
     Movement,
@@ -17,7 +18,7 @@ from server.sentences.movements import (
     years,
 )
 from server.sentences.numbers import number, whole
-from server.sentences.pieces import Sentence, phrase
+from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
 
 Estimates = Mapping[str, Estimate]
@@ -124,6 +125,37 @@ def meanings(estimates: Estimates) -> Sentence:
     return phrase("{said}", said=" ".join(said)) if said else ()
 
 
+def not_read(
+    estimates: Estimates, settings: Settings, *, open_age: int, reach: float, law: Piece
+) -> Sentence:
+    """What a table that ends too early cannot tell, what that costs, and where a law helps out."""
+    missing = [
+        INDICATORS[key]
+        for key, estimate in estimates.items()
+        if int(estimate.reason) == Reason.OPEN_GROUP_TOO_LARGE
+    ]
+    if not missing:
+        return ()
+    return phrase(
+        _(
+            "{figures} cannot be read off a table that ends at {age}: {share} of those born would"
+            " reach that age, and how long they live on is known only on average. With the settings"
+            " {law} a law fitted to the ages below spreads them, marked as a model."
+        ),
+        figures=names.first_capital(
+            names.listed([names.inside(_(indicator.label)) for indicator in missing])
+        ),
+        age=str(open_age),
+        share=f"{whole(100 * reach)}\N{NO-BREAK SPACE}%",
+        law=law,
+    )
+
+
+def table_rows(who: str, period: str, rows: int) -> str:
+    """The summary of the folded life table."""
+    return _("Life table of {who}, {year} ({rows} rows)", who=who, year=period, rows=rows)
+
+
 def _value(estimates: Estimates, key: str) -> str:
     return shown(estimates[key], INDICATORS[key].unit)
 
@@ -196,4 +228,3 @@ def gain(ages: str, share: float) -> str:
         ages=ages,
         share=f"{whole(100 * share)}\N{NO-BREAK SPACE}%",
     )
-

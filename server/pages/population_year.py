@@ -1,0 +1,232 @@
+"""How long do people live here? One area, sex and year."""
+
+from dataclasses import dataclass
+from typing import ClassVar
+
+from engine.indicators import INDICATORS
+from server.charts.chart import Chart
+from server.exports.table import Table
+from server.pages import frames
+from server.pages import population_year_living as living
+from server.pages import population_year_rates as rates
+from server.pages import population_year_tables as tables
+from server.pages.page import Caution, Frame, Page
+from server.results.population_year import Findings, population_year
+from server.results.questions import (
+    ComparisonQuestion,
+    PopulationYear,
+    PopulationYearQuestion,
+    TrendQuestion,
+    address,
+)
+from server.sentences import basis, names
+from server.sentences import population_year as say
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.reasons import reason
+from server.sentences.standing import Headline
+from server.sentences.text import _
+from server.store.connect import Session
+from server.store.heading import Heading
+
+Options = tuple[tuple[str, str], ...]  # value and label, for a form
+LAW = "almanac-1-kannisto"  # what to ask for where the open group is too large
+
+
+@dataclass(frozen=True, slots=True)
+class Choice:
+    """A plain form that leads to another area, sex and year under the same settings."""
+
+    action: str
+    of: PopulationYear
+    areas: Options
+    sexes: Options
+    periods: Options
+    figures: str
+    settings: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class PopulationYearPage(Page):
+    """A life table, its few main numbers and its pictures."""
+
+    template: ClassVar[str] = "population-year/page.html"
+    drawn: frozenset[str]  # keys of the pictures there are
+    rows: str  # what the folded life table holds
+    computed: tuple[Sentence, ...]
+    basis: tuple[Sentence, ...]
+    further: tuple[Sentence, ...]
+    choice: Choice
+
+
+def build(
+    session: Session, heading: Heading, question: PopulationYearQuestion
+) -> PopulationYearPage:
+    found = population_year(session, heading, question)
+    charts = _charts(found, frames.source(heading))
+    return PopulationYearPage(
+        frame=_frame(found),
+        answer=say.answer(
+            found.of.sex,
+            found.name,
+            found.of.period,
+            found.estimates["e0"],
+            reason(int(found.estimates["e0"].reason), found.settings),
+        ),
+        lead=_lead(found),
+        tables=_tables(found),
+        charts=charts,
+        cautions=_cautions(found),
+        twins=frames.twins(heading, question),
+        drawn=frozenset(chart.key for chart in charts),
+        rows=_rows(found),
+        computed=basis.computed(found.settings),
+        basis=frames.basis(heading.edition.basis),
+        further=_further(found),
+        choice=_choice(found),
+    )
+
+
+def _charts(found: Findings, source: str) -> tuple[Chart, ...]:
+    """In the order of the page; a picture that would be empty is left out."""
+    made = (living.survivors, living.deaths, rates.rates, rates.rise, rates.gain)
+    return tuple(chart for chart in (draw(found, source) for draw in made) if chart is not None)
+
+
+def _tables(found: Findings) -> tuple[Table, ...]:
+    made = (tables.figures(found), tables.life(found), tables.rises(found), tables.gains(found))
+    return tuple(table for table in made if table.rows)
+
+
+def _frame(found: Findings) -> Frame:
+    heading, of = found.heading, found.of
+    headline = None
+    if found.moved is not None:
+        headline = Headline(
+            _(INDICATORS["e0"].label),
+            INDICATORS["e0"].unit,
+            float(found.estimates["e0"].value),
+            found.moved.value,
+        )
+    who = names.population(of.sex, found.name)
+    return frames.pinned(
+        heading,
+        found.question,
+        title=_("{who}, {year}", who=names.population_first(of.sex, found.name), year=of.period),
+        place=phrase(_("{who} in {year}"), who=who, year=of.period),
+        figures=found.question.figures,
+        settings=found.question.settings,
+        notices=frames.notices(heading, found.question, found.moved, headline),
+    )
+
+
+def _lead(found: Findings) -> tuple[Sentence, ...]:
+    said: list[Sentence] = []
+    if found.before is not None and say.known(found.estimates, "e0"):
+        said.append(say.change(found.before.change["e0"], found.before.of.period))
+    said.append(say.meanings(found.estimates))
+    law = address(
+        found.heading.collection.code,
+        found.heading.edition.number,
+        PopulationYearQuestion(found.of, found.question.figures, LAW),
+    )
+    said.append(
+        say.not_read(
+            found.estimates,
+            found.settings,
+            open_age=found.loaded.panel.grid.open_age,
+            reach=float(found.chain.open_reach),
+            law=Piece(LAW, law),
+        )
+    )
+    return tuple(sentence for sentence in said if sentence)
+
+
+def _cautions(found: Findings) -> tuple[Caution, ...]:
+    of, before, rate = found.of, found.before, found.chain.rates
+    panel = found.loaded.panel
+    joined = [label for label, is_so in zip(panel.grid.labels, rate.joined, strict=True) if is_so]
+    empty = [
+        label
+        for label, deaths, years in zip(
+            panel.grid.labels, panel.deaths, panel.exposure, strict=True
+        )
+        if deaths == 0 and years > 0
+    ]
+    provisional = [of.period] if found.loaded.status == "provisional" else []
+    if before and before.loaded.status == "provisional":
+        provisional.append(before.of.period)
+    told = [
+        basis.provisional(provisional),
+        basis.few_person_years(float(panel.exposure.sum()), found.settings),
+        basis.no_deaths(empty),
+        basis.joined(joined),
+        basis.regrouped(before.of.period)
+        if before and before.loaded.panel.grid != panel.grid
+        else None,
+        basis.law(found.settings, panel.grid.open_age) if found.chain.modelled else None,
+        *basis.reading(found.settings),
+    ]
+    return tuple(Caution(word, text) for word, text in (pair for pair in told if pair))
+
+
+def _rows(found: Findings) -> str:
+    return say.table_rows(
+        names.population(found.of.sex, found.name),
+        found.of.period,
+        len(found.chain.table.grid),
+    )
+
+
+def _further(found: Findings) -> tuple[Sentence, ...]:
+    """Where to go from here: the same people earlier, the other sex, the whole, the years."""
+    heading, held, asked = found.heading, found.holdings, found.question
+    of, links = found.of, []
+
+    def compared(that: PopulationYear, words: str) -> None:
+        if that in held.status and that != of:
+            question = ComparisonQuestion(of, that, "e0", asked.figures, asked.settings)
+            links.append(
+                Piece(words, address(heading.collection.code, heading.edition.number, question))
+            )
+
+    if found.before:
+        compared(found.before.of, _("against {year}", year=found.before.of.period))
+    first = PopulationYear(of.area, of.sex, held.periods[0])
+    compared(first, _("against {year}", year=first.period))
+    for sex in ("f", "m"):
+        if sex != of.sex:
+            compared(
+                PopulationYear(of.area, sex, of.period), _("against {who}", who=names.sex(sex))
+            )
+    parent = next((area.parent for area in held.areas if area.code == of.area), "")
+    if parent:
+        compared(
+            PopulationYear(parent, of.sex, of.period),
+            _("against {area}, of which it is part", area=held.name(parent)),
+        )
+    trend = TrendQuestion(
+        areas=(of.area,),
+        sexes=(of.sex,),
+        first=held.periods[0],
+        last=held.periods[-1],
+        figures=asked.figures,
+        settings=asked.settings,
+    )
+    years = Piece(
+        _("life expectancy from {first} to {last}", first=trend.first, last=trend.last),
+        address(heading.collection.code, heading.edition.number, trend),
+    )
+    return basis.further(tuple(links), years)
+
+
+def _choice(found: Findings) -> Choice:
+    held, heading = found.holdings, found.heading
+    return Choice(
+        action=f"/c/{heading.collection.code}/{heading.edition.number}/{found.question.view}",
+        of=found.of,
+        areas=tuple((area.code, area.name or area.code) for area in held.areas),
+        sexes=tuple((sex, names.sex(sex)) for sex in ("f", "m", "p") if sex in held.sexes),
+        periods=tuple((period, period) for period in reversed(held.periods)),
+        figures=found.question.figures,
+        settings=found.question.settings,
+    )

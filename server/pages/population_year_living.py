@@ -1,0 +1,149 @@
+"""How many live on and when they die: the first two pictures of a population-year page."""
+
+import math
+from collections.abc import Iterable
+
+import numpy as np
+
+from engine.ages import AgeGrid, Array
+from server.charts.chart import At, Chart, Drop, Mark, Note, Series
+from server.charts.scales import ticks
+from server.pages.drawing import ages, at_age, bars, single_years, values
+from server.pages.population_year_tables import RADIX, counted_groups
+from server.results.population_year import Findings, finite
+from server.sentences import names
+from server.sentences import population_year as say
+from server.sentences.numbers import number, whole
+from server.sentences.text import _
+
+THOUSANDS = tuple(f"{at}" for at in (0, 25, 50, 75, 100))
+
+
+def survivors(found: Findings, source: str) -> Chart:
+    table, (_low, top) = found.chain.table, axis(found)
+    starts = np.array(table.grid.starts, float)
+    lx = np.where(starts <= top, table.lx, np.nan)
+    reach = {
+        age: float(table.lx[table.grid.position(age)]) for age in (65, 85) if table.grid.has(age)
+    }
+    reach = {age: share for age, share in reach.items() if math.isfinite(share)}
+    return Chart(
+        key="survivors",
+        finding=say.survivors(found.of.sex, reach, found.estimates),
+        unit=_(
+            "Survivors to each age, of 100,000 born, at the death rates of {year}",
+            year=found.of.period,
+        ),
+        source=source,
+        described=_(
+            "Curve of survivors by age, {who}; the numbers are in the life table below.",
+            who=who(found),
+        ),
+        x_kind="age",
+        x_range=axis(found),
+        y_title=_("survivors, thousands"),
+        y_range=(0, 1.03 * RADIX),
+        y_ticks=tuple(RADIX * at / 4 for at in range(5)),
+        y_text=THOUSANDS,
+        hover=_("age %{x}: %{y:,.0f} survivors"),
+        table="life",
+        series=(
+            Series(
+                who(found),
+                tuple(starts[starts <= top]),
+                values(RADIX * lx[starts <= top]),
+                sex=found.of.sex,  # type: ignore[arg-type]
+                at=At(48, RADIX * (at_age(table.grid, lx, 48) - 0.12), side="right"),
+            ),
+        ),
+        drops=tuple(
+            Drop(
+                age,
+                RADIX * share,
+                _("{count} reach {age}", count=whole(RADIX * share), age=age),
+                height,
+            )
+            for (age, share), height in zip(reach.items(), (17_000, 7_000), strict=False)
+        ),
+    )
+
+
+def deaths(found: Findings, source: str) -> Chart:
+    table, top = found.chain.table, axis(found)[1]
+    grid, counted = table.grid, counted_groups(found)
+    density = RADIX * table.dx[:-1] / grid.widths[:-1]
+    highest = float(np.nanmax(density)) if np.isfinite(density).any() else 1.0
+    series = [bars(grid, density, range(min(counted, len(density))), who(found))]
+    if found.chain.modelled:
+        beyond = [at for at in range(counted, len(density)) if grid.starts[at] < top]
+        series.append(bars(grid, density, beyond, _("fitted law"), role="s2"))
+    return Chart(
+        key="deaths",
+        finding=say.deaths(found.estimates),
+        unit=_deaths_unit(found),
+        source=source,
+        described=_(
+            "Deaths by age, {who}, with the mean, the median and the most common age marked; the"
+            " numbers are in the life table below.",
+            who=who(found),
+        ),
+        x_kind="age",
+        x_range=axis(found),
+        y_title=_("deaths"),
+        y_range=(0, 1.3 * highest),
+        y_ticks=ticks(0, highest),
+        y_text=tuple(whole(at) for at in ticks(0, highest)),
+        hover=_("age %{customdata}: %{y:,.0f} deaths"),
+        table="life",
+        series=tuple(series),
+        marks=tuple(_marks(found)),
+        marks_top=1.03 * highest,
+        notes=_first_year(grid, density, highest),
+    )
+
+
+def _deaths_unit(found: Findings) -> str:
+    grid = found.chain.table.grid
+    text = (
+        _("Deaths at each single year of age, of 100,000 born")
+        if single_years(grid)
+        else _("Deaths per year of age in each age group, of 100,000 born")
+    )
+    last = float(found.chain.table.dx[-1])
+    if found.chain.modelled or not math.isfinite(last):
+        return text
+    return _(
+        "{text}; the {count} at {age} and over are not drawn",
+        text=text,
+        count=whole(RADIX * last),
+        age=grid.open_age,
+    )
+
+
+def _marks(found: Findings) -> Iterable[Mark]:
+    words = {
+        "e0": _("mean {age}"),
+        "median": _("median {age}"),
+        "mode": _("most common {age}"),
+    }
+    for key, text in words.items():
+        if finite(found.estimates[key]):
+            age = float(found.estimates[key].value)
+            yield Mark(age, text.format(age=number(age, 1)))
+
+
+def _first_year(grid: AgeGrid, density: Array, highest: float) -> tuple[Note, ...]:
+    """The first year's bar is named where its neighbours are too low to show."""
+    beside = density[1 : 1 + sum(start < 20 for start in grid.starts[1:])]
+    if grid.starts[1:2] != (1,) or not density[0] > 3 * np.max(beside, initial=0):
+        return ()
+    text = _("{count} in the first year", count=whole(float(density[0])))
+    return (Note(text, At(2.5, max(0.5 * float(density[0]), 0.05 * highest))),)
+
+
+def who(found: Findings) -> str:
+    return _("{sex}, {year}", sex=names.sex(found.of.sex), year=found.of.period)
+
+
+def axis(found: Findings) -> tuple[float, float]:
+    return ages(found.loaded.panel.grid, modelled=found.chain.modelled)

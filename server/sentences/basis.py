@@ -1,0 +1,133 @@
+"""How figures were computed, what cautions they carry and where to go on: said on several pages.
+
+A caution is (word, text), or None where there is nothing to warn of.
+"""
+
+from collections.abc import Sequence
+
+from engine.settings import Settings
+from server.sentences.names import listed
+from server.sentences.numbers import whole
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.text import _, n_
+
+Told = tuple[str, str] | None
+
+
+def computed(settings: Settings) -> tuple[Sentence, ...]:
+    """The chain of stages, and how the intervals come about."""
+    stages = tuple(
+        phrase(
+            "{name} {sentence}",
+            name=Piece(f"{_(stage.name)}.", emphasis="strong"),
+            sentence=_(stage.sentence),
+        )
+        for stage in settings.stages
+    )
+    level = whole(100 * settings.level)
+    intervals = phrase(
+        "{name}. {sentence} {methods}.",
+        name=Piece(_("Intervals"), emphasis="strong"),
+        sentence=_(
+            "With {level} % they cover what chance in the number of deaths can do, deaths taken as"
+            " Poisson: by the delta method, and by {draws} simulated tables for figures that jump,"
+            " such as the most common age.",
+            level=level,
+            draws=settings.draws,
+        ),
+        methods=Piece(_("All methods and sources"), "/methods"),
+    )
+    return (*stages, intervals)
+
+
+def provisional(periods: Sequence[str]) -> Told:
+    if not periods:
+        return None
+    return _("Provisional"), n_(
+        "{years} is provisional in this edition: deaths reported late may still move its figures.",
+        "{years} are provisional in this edition: deaths reported late may still move their"
+        " figures.",
+        len(periods),
+        years=listed(sorted(periods)),
+    )
+
+
+def few_person_years(lived: float, settings: Settings) -> Told:
+    """A flag, below the settings' bound, on figures that chance moves a good deal."""
+    if not lived < settings.few_exposure:
+        return None
+    return _("Few people"), _(
+        "These figures rest on {years} person-years. Below {bound} they jump from year to year by"
+        " chance; read the intervals, not the figures alone.",
+        years=whole(lived),
+        bound=whole(settings.few_exposure),
+    )
+
+
+def no_deaths(ages: Sequence[str]) -> Told:
+    if not ages:
+        return None
+    return _("No deaths"), _(
+        "Nobody died at ages {ages}: the rates there are nil, which a ratio scale cannot show.",
+        ages=listed(ages, most=12),
+    )
+
+
+def joined(ages: Sequence[str]) -> Told:
+    if not ages:
+        return None
+    return _("Joined ages"), _(
+        "Nobody was counted at some of the ages {ages}: neighbours among them share one rate.",
+        ages=listed(ages, most=12),
+    )
+
+
+def regrouped(period: str) -> Told:
+    return _("Age groups"), _(
+        "{year} was counted in other age groups; the change is taken on those that both have.",
+        year=period,
+    )
+
+
+def law(settings: Settings, open_age: int) -> Told:
+    return _("Model"), _(
+        "Above {age} a law fitted from age {first} stands in for the counts; what is read there is"
+        " the law's.",
+        age=open_age,
+        first=settings.fit_from,
+    )
+
+
+def reading(settings: Settings) -> tuple[Told, ...]:
+    """What every figure read off a life table is, and is not."""
+    return (
+        (
+            _("Reading"),
+            _(
+                "Life expectancy sums up one year’s death rates. It is no forecast of how long"
+                " anyone will live."
+            ),
+        ),
+        (
+            _("Chance"),
+            _(
+                "The intervals cover chance in the number of deaths only, not errors in counting"
+                " deaths or people."
+            ),
+        ),
+    )
+
+
+def further(comparisons: Sequence[Piece], years: Piece) -> tuple[Sentence, ...]:
+    """Links to comparisons and to the trend."""
+    trend = phrase(_("Which way is it going? {years}."), years=years)
+    if not comparisons:
+        return (trend,)
+    parts: list[Piece] = []
+    for at, link in enumerate(comparisons):
+        parts += [Piece(", ")] if at else []
+        parts.append(link)
+    return (
+        (*phrase(_("What makes the difference? Compare it ")), *parts, Piece(".")),
+        trend,
+    )
