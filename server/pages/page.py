@@ -44,6 +44,8 @@ class Page:
     """One question answered. Twins and HTML are written from `tables`."""
 
     template: ClassVar[str]
+    # blocks, each the inside of the element of its name, that go along when another is asked for
+    out_of_band: ClassVar[tuple[str, ...]] = ()
     frame: Frame
     answer: Sentence
     lead: tuple[Sentence, ...] = ()

@@ -1,0 +1,57 @@
+"""A Chart record becomes a figure: data and layout for the wide page, what changes on the phone
+and in print. Plain dictionaries; the plate's words (finding, unit, source) are not in it."""
+
+from collections.abc import Callable
+from decimal import Decimal
+from math import ceil, floor, log10
+from typing import Any
+
+from server.charts.chart import Chart
+from server.charts.layout import margins, placed
+from server.charts.template import LAYOUT, NARROW, PRINT, WIDE
+from server.charts.traces import traces
+
+STEP = {"age": (10, 20), "year": (5, 10)}  # of labelled ticks, wide and narrow
+
+
+def figure(chart: Chart, say: Callable[[str], str]) -> dict[str, Any]:
+    """{"data", "layout", "narrow", "print", "print_height"}.
+
+    `narrow` and `print` replace whole keys of the layout. `say` is the text catalogue.
+    """
+    layout = LAYOUT | {"xaxis": _x_axis(chart, narrow=False), "yaxis": _y_axis(chart)}
+    font = LAYOUT["font"]
+    wide, phone, paper = (
+        {"margin": margins(chart, measure)} | placed(chart, measure, say)
+        for measure in (WIDE, NARROW, PRINT)
+    )
+    phone |= {"font": font | {"size": NARROW.text}, "xaxis": _x_axis(chart, narrow=True)}
+    return {
+        "data": traces(chart),
+        "layout": layout | wide,
+        "narrow": phone,
+        "print": paper | {"font": font | {"size": PRINT.text}},
+        "print_height": PRINT.heights[chart.size],
+    }
+
+
+def _x_axis(chart: Chart, *, narrow: bool) -> dict[str, Any]:
+    low, high = chart.x_range
+    step = STEP[chart.x_kind][narrow]
+    ticks = [step * index for index in range(ceil(low / step), floor(high / step) + 1)]
+    return {**LAYOUT["xaxis"], "range": [low, high], "tickvals": ticks}
+
+
+def _y_axis(chart: Chart) -> dict[str, Any]:
+    low, high = (log10(end) if chart.y_log else end for end in chart.y_range)
+    kind = "log" if chart.y_log else "linear"
+    axis = {**LAYOUT["yaxis"], "type": kind, "range": [low, high], "tickvals": [*chart.y_ticks]}
+    if chart.y_text:
+        return axis | {"ticktext": [*chart.y_text]}
+    decimals = max((_decimals(tick) for tick in chart.y_ticks), default=0)
+    return axis | {"tickformat": ",~g" if chart.y_log else f",.{decimals}f"}
+
+
+def _decimals(tick: float) -> int:
+    exponent = Decimal(str(tick)).normalize().as_tuple().exponent
+    return max(0, -int(exponent))
