@@ -95,7 +95,7 @@ def load(
 ) -> dict[PopulationYear, Loaded]:
     """Panels of those population-years that the edition holds; the others are left out.
 
-    Persons are made of women and men where it holds both, since their first-year rules differ.
+    Persons take their first-year rule from women and men where it holds both.
     """
     asked = tuple(dict.fromkeys(wanted))
     sexes = {one.sex for one in asked}
@@ -117,17 +117,18 @@ def load(
 
 
 def _assembled(cells: dict[Key, Vector], wanted: PopulationYear) -> Loaded | None:
+    own = _single(cells, wanted)
     if wanted.sex != "p":
-        return _single(cells, wanted)
+        return own
     women, men = (_single(cells, replace(wanted, sex=sex)) for sex in ("f", "m"))
     if women is None or men is None:
-        return _single(cells, wanted)
-    births = None
-    if women.births is not None and men.births is not None:
-        births = women.births + men.births
-    return Loaded(
-        Panel.persons(women.panel, men.panel), _status((women.status, men.status)), births
-    )
+        return own
+    together = Panel.persons(women.panel, men.panel)
+    if own is None:
+        return Loaded(together, _status((women.status, men.status)), None)
+    # the counts of persons may hold deaths of unknown sex: only the first-year rule is taken over
+    mix = {name: getattr(together, name) for name in ("infant_weight", "infant_ratio")}
+    return replace(own, panel=replace(own.panel, **mix))
 
 
 def _single(cells: dict[Key, Vector], wanted: PopulationYear) -> Loaded | None:
