@@ -1,11 +1,18 @@
 """The only maker of test data. Each part of the system has its section; keep them small."""
 
+import datetime as dt
+from collections.abc import Collection, Mapping
+
 import numpy as np
 from hypothesis import strategies as st
 from numpy.typing import ArrayLike, NDArray
 
 from engine.ages import AgeGrid, Array
 from engine.panel import Panel
+from server.actions import totals
+from server.store import areas, collections, editions, schedules
+from server.store.connect import Session, transaction
+from server.store.records import Area, Basis, Change, Edition, Key, Vector
 
 # ---- engine: panels -----------------------------------------------------------------------------
 
@@ -86,3 +93,47 @@ def panels(draw: st.DrawFn, batch: int = 4) -> Panel:
         level=0.1 / np.exp(82 * slope),
         infant=0.002 + 0.15 * draw(shares),
     )
+
+
+# ---- server: editions ---------------------------------------------------------------------------
+
+NOON = dt.datetime(2026, 12, 1, 12, tzinfo=dt.UTC)
+BASIS = Basis("residents", "death", "midyear", "1 July of each year", "Statistics desk of the isle")
+
+
+def edition(
+    session: Session,
+    panels: Mapping[str, Panel],
+    *,
+    code: str = "isle",
+    parents: Mapping[str, str] | None = None,
+    delivered: Collection[str] = (),
+    provisional: Collection[str] = (),
+    note: str = "",
+) -> Edition:
+    """A further edition of a collection, made anew where there is none. `panels` are named by their
+    population-years ("north.f.2014"), `provisional` names years; totals are summed as at a commit.
+    """
+    parents = parents or {}
+    with transaction(session):
+        if code not in [one.code for one in collections.all_collections(session)]:
+            collections.create(session, code=code, name="The isle", owner="Desk", at=NOON)
+    standing = editions.newest_standing(session, code)
+    base = standing.number if standing else 0
+    cells = {}
+    for name, panel in panels.items():
+        area, sex, period = name.rsplit(".", 2)
+        status = "provisional" if period in provisional else "final"
+        for measure, counts in (("deaths", panel.deaths), ("person_years", panel.exposure)):
+            cells[Key(area, sex, period, measure)] = Vector(status, panel.grid, counts)
+    named = {key.area for key in cells} | {*parents, *parents.values()}
+    stood = areas.listing(session, code, base) if base else ()
+    listed = totals.merged(
+        [Area(one, one.title(), parents.get(one, ""), one in delivered) for one in named], stood
+    )
+    held = schedules.load(session, code, base) if base else {}
+    summed = totals.totalled(cells, listed, base=held, base_areas=stood)
+    change = Change(code, base, summed.cells, listed, BASIS, ended=summed.ended)
+    prepared = editions.prepare(session, change)
+    with transaction(session):
+        return editions.write(session, prepared, by="the desk", note=note, at=NOON)
