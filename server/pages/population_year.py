@@ -93,7 +93,9 @@ def _charts(found: Findings, source: str) -> tuple[Chart, ...]:
 
 
 def _tables(found: Findings) -> tuple[Table, ...]:
-    made = (tables.figures(found), tables.life(found), tables.rises(found), tables.gains(found))
+    made = [tables.figures(found), tables.life(found), tables.rises(found)]
+    if found.gainful:
+        made.append(tables.gains(found))
     return tuple(table for table in made if table.rows)
 
 

@@ -19,7 +19,9 @@ from server.sentences.text import _
 THOUSANDS = tuple(f"{at}" for at in (0, 25, 50, 75, 100))
 
 
-def survivors(found: Findings, source: str) -> Chart:
+def survivors(found: Findings, source: str) -> Chart | None:
+    if not found.readable:
+        return None
     table, (_low, top) = found.chain.table, axis(found)
     starts = np.array(table.grid.starts, float)
     lx = np.where(starts <= top, table.lx, np.nan)
@@ -68,7 +70,9 @@ def survivors(found: Findings, source: str) -> Chart:
     )
 
 
-def deaths(found: Findings, source: str) -> Chart:
+def deaths(found: Findings, source: str) -> Chart | None:
+    if not found.readable:
+        return None
     table, top = found.chain.table, axis(found)[1]
     grid, counted = table.grid, counted_groups(found)
     density = RADIX * table.dx[:-1] / grid.widths[:-1]

@@ -137,7 +137,7 @@ def rise(found: Findings, source: str) -> Chart | None:
 
 
 def gain(found: Findings, source: str) -> Chart | None:
-    if not np.isfinite(found.gain).all() or not np.any(found.gain > 0):
+    if not found.gainful:
         return None
     grid, days = found.loaded.panel.grid, DAYS * found.gain
     density = days[:-1] / grid.widths[:-1]

@@ -2,7 +2,6 @@
 
 import numpy as np
 
-from engine.ages import AgeGrid, Array
 from engine.estimates import Estimate
 from engine.indicators import find
 from server.exports.table import Cell, Column, Gap, GapKind, Row, Table
@@ -10,6 +9,7 @@ from server.pages.cells import columns, count, number, triple
 from server.results.estimating import USUAL
 from server.results.population_year import Findings
 from server.sentences import names
+from server.sentences.reasons import reason
 from server.sentences.text import _
 
 RADIX = 100_000
@@ -96,6 +96,7 @@ def life(found: Findings) -> Table:
 
 def _life_row(found: Findings, at: int) -> Row:
     table, rates = found.chain.table, found.chain.rates
+    why = reason(int(found.estimates["e0"].reason), found.settings)
     counted = at < counted_groups(found)
     if counted:
         counts = (count(rates.deaths[at]), number(rates.exposure[at]))
@@ -103,16 +104,15 @@ def _life_row(found: Findings, at: int) -> Row:
     else:
         none = Gap(GapKind.NOT_AVAILABLE, _("A fitted law stands in for counts at these ages."))
         counts, rate = (none, none), number(1000 * table.mx[at])
-    read = (table.ax[at], table.qx[at])
-    of_born = (table.lx[at], table.dx[at], table.Lx[at])
+    read = [table.ax[at], table.qx[at]]
+    read += [RADIX * column[at] for column in (table.lx, table.dx, table.Lx)]
+    read.append(table.ex[at])
     return Row(
         (
             table.grid.labels[at],
             *counts,
             rate,
-            *(number(value) for value in read),
-            *(number(RADIX * value) for value in of_born),
-            number(table.ex[at]),
+            *(number(value if found.readable else np.nan, why) for value in read),
         ),
         second=_("rate of joined ages") if counted and rates.joined[at] else "",
     )
@@ -164,8 +164,3 @@ def gains(found: Findings) -> Table:
 
 def _open() -> Gap:
     return Gap(GapKind.UNDEFINED, _("The group has no end."))
-
-
-def per_year(grid: AgeGrid, values: Array) -> Array:
-    """Values of the closed groups, spread over their years of age, [age - 1]."""
-    return values[..., :-1] / grid.widths[:-1]

@@ -8,7 +8,7 @@ from engine import ageing, indicators, sensitivity
 from engine import settings as named
 from engine.ages import Array
 from engine.chain import Chain, run
-from engine.estimates import Estimate
+from engine.estimates import Estimate, Reason
 from engine.settings import Settings
 from server.results.estimating import USUAL, differences, estimates, stream
 from server.results.loading import Holdings, Loaded, holdings, load
@@ -16,6 +16,8 @@ from server.results.questions import PopulationYear, PopulationYearQuestion
 from server.results.revision import Moved, moved
 from server.store.connect import Session
 from server.store.heading import Heading
+
+NO_TABLE = (Reason.TOO_FEW_PERSON_YEARS, Reason.NO_POPULATION, Reason.NOT_AVAILABLE)
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,6 +49,16 @@ class Findings:
     @property
     def of(self) -> PopulationYear:
         return self.question.of
+
+    @property
+    def readable(self) -> bool:
+        """Whether a life table may be read at all: enough people, and a rate at every age."""
+        return int(self.estimates["e0"].reason) not in NO_TABLE
+
+    @property
+    def gainful(self) -> bool:
+        """Whether it is known what lower death rates would add."""
+        return self.readable and bool(np.isfinite(self.gain).all() and self.gain.any())
 
     @property
     def name(self) -> str:
