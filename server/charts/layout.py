@@ -115,6 +115,8 @@ class _Canvas:
     def _tops(self) -> list[tuple[int, float]]:
         """For each mark the side of its label and its top as a share of the height; it may rise
         above the scale."""
+        if not self.chart.marks:
+            return []
         marks, top = self.chart.marks, self.py(self.chart.marks_top)
         return [
             (side, (top + storey * 17) / self.height)
