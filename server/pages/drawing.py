@@ -16,6 +16,11 @@ def ages(grid: AgeGrid, *, modelled: bool = False) -> tuple[float, float]:
     return LONGER_LIFE if modelled or grid.open_age > WHOLE_LIFE[1] else WHOLE_LIFE
 
 
+def places(column: Array) -> tuple[float, ...]:
+    """Plain numbers on the x axis."""
+    return tuple(float(place) for place in column)
+
+
 def values(column: Array) -> tuple[float | None, ...]:
     """Numbers to draw; what is missing is a gap."""
     return tuple(float(value) if np.isfinite(value) else None for value in column)
@@ -43,10 +48,10 @@ def bars(
     at = list(groups)
     return Series(
         label,
-        tuple(grid.mids[at]),
+        places(grid.mids[at]),
         values(density[at]),
         draw="needles" if np.all(grid.widths[at] == 1) else "bars",
         role=role,
-        widths=tuple(grid.widths[at]),
+        widths=places(grid.widths[at]),
         names=tuple(grid.labels[group] for group in at),
     )

@@ -8,7 +8,7 @@ import numpy as np
 from engine.ages import AgeGrid, Array
 from server.charts.chart import At, Chart, Drop, Mark, Note, Series
 from server.charts.scales import ticks
-from server.pages.drawing import ages, at_age, bars, single_years, values
+from server.pages.drawing import ages, at_age, bars, places, single_years, values
 from server.pages.population_year_tables import RADIX, counted_groups
 from server.results.population_year import Findings, finite
 from server.sentences import names
@@ -52,7 +52,7 @@ def survivors(found: Findings, source: str) -> Chart | None:
         series=(
             Series(
                 who(found),
-                tuple(starts[starts <= top]),
+                places(starts[starts <= top]),
                 values(RADIX * lx[starts <= top]),
                 sex=found.of.sex,  # type: ignore[arg-type]
                 at=At(48, RADIX * (at_age(table.grid, lx, 48) - 0.12), side="right"),

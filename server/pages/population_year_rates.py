@@ -8,7 +8,7 @@ import numpy as np
 from engine.ages import AgeGrid, Array
 from server.charts.chart import At, Chart, Note, Series
 from server.charts.scales import log_ticks, ticks
-from server.pages.drawing import at_age, bars, single_years, values
+from server.pages.drawing import at_age, bars, places, single_years, values
 from server.pages.population_year_living import axis, who
 from server.pages.population_year_tables import DAYS, counted_groups
 from server.results.population_year import Findings, finite
@@ -29,7 +29,7 @@ def rates(found: Findings, source: str) -> Chart | None:
     series = [
         Series(
             who(found),
-            tuple(grid.mids[:closed]),
+            places(grid.mids[:closed]),
             values(per_thousand[:closed]),
             sex=found.of.sex,  # type: ignore[arg-type]
             names=grid.labels[:closed],
@@ -41,7 +41,7 @@ def rates(found: Findings, source: str) -> Chart | None:
         series.append(
             Series(
                 _("fitted law"),
-                tuple(grid.mids[beyond]),
+                places(grid.mids[beyond]),
                 values(per_thousand[beyond]),
                 sex="p",
                 role="s2",
@@ -90,7 +90,7 @@ def rise(found: Findings, source: str) -> Chart | None:
     series = [
         Series(
             who(found),
-            tuple(k.at[known]),
+            places(k.at[known]),
             values(100 * k.value[known]),
             draw="dots",
             sex=found.of.sex,  # type: ignore[arg-type]
