@@ -1,7 +1,7 @@
 """The only maker of test data. Each part of the system has its section; keep them small."""
 
 import datetime as dt
-from collections.abc import Collection, Mapping
+from collections.abc import Collection, Iterable, Mapping
 
 import numpy as np
 from hypothesis import strategies as st
@@ -10,7 +10,7 @@ from numpy.typing import ArrayLike, NDArray
 from engine.ages import AgeGrid, Array
 from engine.panel import Panel
 from server.actions import totals
-from server.store import areas, collections, editions, schedules
+from server.store import areas, collections, editions, records, schedules
 from server.store.connect import Session, transaction
 from server.store.records import Area, Basis, Change, Edition, Key, Vector
 
@@ -137,3 +137,64 @@ def edition(
     prepared = editions.prepare(session, change)
     with transaction(session):
         return editions.write(session, prepared, by="the desk", note=note, at=NOON)
+
+
+# ---- store: schedules as they are ----------------------------------------------------------------
+
+
+def cells(
+    areas: Iterable[str] = "a",
+    *,
+    sexes: Iterable[str] = "fm",
+    years: Iterable[int] = (2001,),
+    measures: Iterable[str] = ("deaths", "person_years"),
+    grid: AgeGrid | None = None,
+    status: str = "final",
+    times: float = 1.0,
+) -> dict[Key, Vector]:
+    """Schedules with numbers of their own: no two keys hold the same."""
+    grid = grid or AgeGrid((0, 1, 5, 10))
+    keys = [Key(a, s, str(y), m) for a in areas for s in sexes for y in years for m in measures]
+    return {
+        key: Vector(status, grid, times * (100.0 * number + np.arange(1.0, len(grid) + 1)))
+        for number, key in enumerate(keys, start=1)
+    }
+
+
+def stored_collection(session: Session, code: str = "saltmarsh") -> records.Collection:
+    with transaction(session):
+        return collections.create(session, code=code, name="All deaths", owner="office", at=NOON)
+
+
+def stored_edition(
+    session: Session,
+    handed: Mapping[Key, Vector],
+    *,
+    collection: str = "saltmarsh",
+    areas: Iterable[Area] | None = None,
+    basis: Basis = BASIS,
+    upload: int | None = None,
+    replace: bool = False,
+) -> Edition:
+    """An edition on top of the newest standing one, with these schedules as they are: nothing is
+    read from a file and nothing is summed."""
+    standing = editions.newest_standing(session, collection)
+    change = Change(
+        collection=collection,
+        base=standing.number if standing else 0,
+        cells=handed,
+        areas=tuple(areas or (Area(code, "") for code in sorted({key.area for key in handed}))),
+        basis=basis,
+        upload=upload,
+        replace=replace,
+    )
+    prepared = editions.prepare(session, change)
+    with transaction(session):
+        return editions.write(session, prepared, by="a tester", note="", at=NOON)
+
+
+def withdrawn(session: Session, number: int, collection: str = "saltmarsh") -> Edition:
+    with transaction(session):
+        return editions.record_event(
+            session, collection, number, "withdrawn", by="a tester", note="wrong", at=NOON
+        )

@@ -17,15 +17,17 @@ class Refused(Exception):
 
 
 class Missing(Refused):
-    """Nothing of this kind has this code. `known` lists those there are."""
+    """Nothing of this kind has this code. `known` lists those there are; None: not listed."""
 
-    def __init__(self, kind: str, code: object, known: Iterable[object] = ()) -> None:
+    def __init__(self, kind: str, code: object, known: Iterable[object] | None = None) -> None:
         self.kind, self.code = kind, str(code)
-        self.known = tuple(str(one) for one in known)
+        self.known = tuple(str(one) for one in known or ())
         if self.known:
             text = "There is no {kind} {code}; known: {known}."
-        else:
+        elif known is not None:
             text = "There is no {kind} {code}, nor any other yet."
+        else:
+            text = "There is no {kind} {code}."
         super().__init__(text, kind=kind, code=self.code, known=", ".join(self.known))
 
 

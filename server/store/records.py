@@ -140,3 +140,22 @@ class Selection:
     periods: tuple[str, ...] | None = None
     measures: tuple[str, ...] | None = None
     cause: str | None = ""  # empty: the deaths of all causes
+
+
+@dataclass(frozen=True, slots=True)
+class Job:
+    """A piece of work that may outlast a request."""
+
+    id: int
+    kind: str
+    params: str  # JSON, keys sorted
+    digest: str  # of kind and params: the same request has the same digest
+    state: str  # queued, running, done, failed, cancelled
+    done: int
+    total: int  # 0: not known yet
+    message: str
+    attempt: int  # how often it was begun; a worker writes only under the attempt it began
+    beat: int  # grows with every sign of life
+    queued: dt.datetime
+    started: dt.datetime | None
+    ended: dt.datetime | None

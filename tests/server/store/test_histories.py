@@ -1,7 +1,6 @@
 """Random histories of a collection against full copies: whatever happens later, every edition reads
 as it was committed. EBBLINE_HISTORIES=300 in the environment makes the long run."""
 
-import datetime as dt
 import os
 import random
 from collections.abc import Iterator
@@ -13,11 +12,11 @@ from sqlalchemy.exc import IntegrityError
 from sqlalchemy.orm import Session
 
 from engine.ages import AgeGrid
-from server.store import areas, collections, digests, editions, ranges, rows, schedules
+from server.store import areas, digests, editions, ranges, rows, schedules
 from server.store.connect import transaction
 from server.store.records import Area, Basis, Change, Edition, Key, Selection, Vector
+from tests.factories import NOON, stored_collection
 
-NOW = dt.datetime(2026, 12, 1, 12, tzinfo=dt.UTC)
 GRIDS = [AgeGrid((0, 1, 5, 10)), AgeGrid((0, 5, 10)), AgeGrid((0, 1, 2, 3, 4, 5, 10))]
 HISTORIES = {"sqlite": 60, "postgresql": 15}
 Content = tuple[dict[Key, tuple[str, str, bytes]], frozenset[tuple[str, str, bool]], Basis]
@@ -40,8 +39,7 @@ class History:
         self.random = random.Random(seed)
         self.copies: dict[int, Content] = {0: NOTHING}
         self.withdrawn: set[int] = set()
-        with transaction(session):
-            collections.create(session, code=self.code, name="A", owner="B", at=NOW)
+        stored_collection(session, self.code)
 
     def run(self, steps: int, monkeypatch: pytest.MonkeyPatch) -> None:
         for _ in range(steps):
@@ -103,7 +101,7 @@ class History:
         prepared = editions.prepare(self.session, change)
         with transaction(self.session):
             editions.require_base(self.session, self.code, change.base)
-            return editions.write(self.session, prepared, by="me", note="", at=NOW)
+            return editions.write(self.session, prepared, by="me", note="", at=NOON)
 
     def copied(self, change: Change) -> Content:
         stood = NOTHING if change.replace else self.copies[change.base]
@@ -129,7 +127,7 @@ class History:
             number = self.random.choice(sorted(among))
             with transaction(self.session):
                 editions.record_event(
-                    self.session, self.code, number, what, by="me", note="", at=NOW
+                    self.session, self.code, number, what, by="me", note="", at=NOON
                 )
             self.withdrawn ^= {number}
 
