@@ -3,8 +3,9 @@
 import numpy as np
 import pytest
 
-from engine.chain import run
+from engine.chain import gradient, run
 from engine.decomposition import arriaga
+from engine.indicators import find as indicator
 from engine.settings import find
 from engine.tables import LifeTable, Partials, pull
 from tests.published import denmark
@@ -75,3 +76,35 @@ def test_arriaga(sex: str, years: tuple[int, int]) -> None:
     np.testing.assert_allclose(found, expected, rtol=0, atol=1e-6)
     assert found.sum() == pytest.approx(last.ex[0] - first.ex[0], abs=1e-9)
     assert sum(expected) == pytest.approx(last.ex[0] - first.ex[0], abs=1e-6)
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize("sex", denmark.SEXES)
+def test_what_the_first_year_rule_adds_to_e_dagger(
+    sex: str, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """-sum m de0/dm through the whole chain is e-dagger and what a0 moves with m0: measured."""
+    chain = run(denmark.panel(sex), find("almanac-1"))
+    table, rates = chain.table, chain.rates
+    whole = -(rates.mx * gradient(indicator("e0"), chain)).sum(axis=-1)
+    remainder = whole - denmark.summary(sex, "edagger_A")
+    np.testing.assert_allclose(  # with a0 held the identity is exact
+        whole + rates.mx[:, 0] * chain.separation.own[:, 0] * _by_first_year(table),
+        indicator("edagger").value(chain),
+        rtol=1e-12,
+    )
+    with capsys.disabled():
+        print(
+            f"\n  of e-dagger, {sex}: a0(m0) adds {remainder.min():.6f} to {remainder.max():.6f}",
+            end="",
+        )
+    assert (remainder > 1e-6).all()
+    assert (remainder < 5e-4).all()
+
+
+def _by_first_year(table: LifeTable) -> np.ndarray:
+    """d e0 / d a0 with all mx held, in closed form."""
+    q, m = table.qx[:, 0], table.mx[:, 0]
+    return np.asarray(
+        q - q * m / (1 + (1 - table.ax[:, 0]) * m) * (1 - table.ax[:, 0] + table.ex[:, 1])
+    )

@@ -1,0 +1,125 @@
+"""Each reason, from counts that call for it."""
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from engine.ages import AgeGrid
+from engine.chain import run
+from engine.estimates import Reason
+from engine.indicators import INDICATORS, estimate, find
+from engine.panel import Panel
+from engine.settings import SETTINGS
+from tests.factories import GRIDS, gompertz_panel
+
+PLAIN, LAW = SETTINGS["almanac-1"], SETTINGS["almanac-1-gompertz"]
+SPREAD = {"mode", "mode_raw", "mode_parabola", "edagger", "H"}
+SOUND = gompertz_panel(people=5e6)
+EARLY_END = AgeGrid((0, 1, *range(5, 86, 5)))
+
+
+def reasons(panel: Panel, settings=PLAIN) -> dict[str, Reason]:
+    return {
+        key: Reason(int(estimate(indicator, panel, settings, streams=np.array("isle")).reason))
+        for key, indicator in INDICATORS.items()
+    }
+
+
+def only(panel: Panel, reason: Reason, settings=PLAIN) -> set[str]:
+    """Keys with the reason; all others must have none."""
+    found = reasons(panel, settings)
+    assert set(found.values()) <= {reason, Reason.NONE}
+    return {key for key, why in found.items() if why is reason}
+
+
+def changed(age: int, *, deaths: float, exposure: float | None = None) -> Panel:
+    at = np.array(SOUND.grid.starts) == age
+    return replace(
+        SOUND,
+        deaths=np.where(at, deaths, SOUND.deaths),
+        exposure=SOUND.exposure if exposure is None else np.where(at, exposure, SOUND.exposure),
+    )
+
+
+def test_sound_counts_give_every_number() -> None:
+    assert only(SOUND, Reason.NONE) == set(INDICATORS)
+
+
+def test_too_large_an_open_group_hides_what_is_spread_over_it() -> None:
+    ends_early = SOUND.regroup(EARLY_END)
+    assert run(ends_early, PLAIN).open_reach > 0.05
+    assert only(ends_early, Reason.OPEN_GROUP_TOO_LARGE) == SPREAD
+    assert only(ends_early, Reason.NONE, LAW) == set(INDICATORS)
+    generous = replace(PLAIN, open_share=0.9)
+    assert only(ends_early, Reason.NONE, generous) == set(INDICATORS)
+
+
+def test_the_median_is_lost_in_an_open_group_that_half_reach() -> None:
+    ends_early = SOUND.regroup(AgeGrid((0, 1, *range(5, 71, 5))))
+    found = reasons(ends_early)
+    assert found["median"] is Reason.OPEN_GROUP_TOO_LARGE
+    assert found["e0"] is Reason.NONE
+
+
+def test_no_deaths_in_the_open_group() -> None:
+    spared = changed(100, deaths=0)
+    hit = {"e0", "e65", "edagger", "H"}
+    assert only(spared, Reason.NO_DEATHS_IN_OPEN_GROUP) == hit
+    assert only(spared, Reason.NONE, LAW) == set(INDICATORS)
+
+
+def test_few_person_years_give_no_figure() -> None:
+    few = replace(SOUND, deaths=SOUND.deaths / 1001, exposure=SOUND.exposure / 1001)
+    assert only(few, Reason.TOO_FEW_PERSON_YEARS) == set(INDICATORS)
+
+
+def test_nobody_in_the_first_year_of_life() -> None:
+    assert only(changed(0, deaths=0, exposure=0), Reason.NO_POPULATION) == set(INDICATORS)
+
+
+def test_no_deaths_at_all() -> None:
+    nobody = replace(SOUND, deaths=0 * SOUND.deaths)
+    assert only(nobody, Reason.NO_DEATHS) == set(INDICATORS)
+
+
+def test_no_deaths_in_the_span_of_the_ageing_rate() -> None:
+    ages = np.array(SOUND.grid.starts)
+    spared = replace(SOUND, deaths=np.where((ages >= 40) & (ages < 85), 0, SOUND.deaths))
+    assert reasons(spared)["ageing_rate"] is Reason.NO_DEATHS
+
+
+def test_too_few_groups_for_the_ageing_rate() -> None:
+    coarse = SOUND.regroup(AgeGrid((0, 1, 5, 15, 40, 60, 65, 90, 95, 100)))
+    narrow = replace(PLAIN, ageing_span=(40, 64))
+    assert reasons(coarse, narrow)["ageing_rate"] is Reason.TOO_FEW_AGES
+
+
+@pytest.mark.parametrize(("key", "age"), [("e65", 65), ("45q15", 15), ("45q15", 60), ("5q0", 5)])
+def test_an_age_that_begins_no_group(key: str, age: int) -> None:
+    coarse = SOUND.regroup(AgeGrid(tuple(a for a in SOUND.grid.starts if a != age)))
+    assert reasons(coarse)[key] is Reason.AGE_NOT_ON_GRID
+    assert reasons(coarse)["e0"] is Reason.NONE
+
+
+def test_an_age_above_the_open_one_needs_a_law() -> None:
+    e103 = find("e103")
+    assert estimate(e103, SOUND, PLAIN).reason == Reason.AGE_NOT_ON_GRID
+    got = estimate(e103, SOUND, LAW)
+    assert got.reason == Reason.NONE
+    assert 0.5 < got.value < 3
+
+
+def test_no_peak_below_the_open_age() -> None:
+    long_lived = gompertz_panel(GRIDS["abridged"], level=0.1 / np.exp(108 * 0.1), people=5e6)
+    found = reasons(long_lived, LAW)
+    assert {key for key in SPREAD if found[key] is Reason.MODE_AT_EDGE} == {
+        "mode", "mode_raw", "mode_parabola",
+    }  # fmt: skip
+
+
+def test_a_law_that_cannot_be_fitted() -> None:
+    coarse = SOUND.regroup(AgeGrid((0, 1, 5, 15, 60, 65, 75, 85)))
+    found = reasons(coarse, LAW)
+    assert found["e0"] is found["H"] is Reason.TOO_FEW_AGES
+    assert found["5q0"] is Reason.NONE

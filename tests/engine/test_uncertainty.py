@@ -1,0 +1,176 @@
+"""Intervals against simulation, counts that overlap, and what is said where there is none."""
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+from numpy.testing import assert_allclose, assert_array_equal
+
+from engine.chain import gradient, run
+from engine.estimates import Reason
+from engine.indicators import INDICATORS, difference, estimate, find
+from engine.settings import SETTINGS
+from engine.streams import poisson_draws
+from engine.uncertainty import _quantiles
+from tests.factories import GRIDS, codes, gompertz_panel
+
+SETTINGS_1 = SETTINGS["almanac-1"]
+SMOOTH = [indicator for indicator in INDICATORS.values() if indicator.smooth]
+E0, MODE, MEDIAN = INDICATORS["e0"], INDICATORS["mode"], INDICATORS["median"]
+
+
+@pytest.mark.parametrize("indicator", SMOOTH, ids=lambda i: i.key)
+@pytest.mark.parametrize("settings", SETTINGS.values(), ids=lambda s: s.key)
+def test_the_delta_interval_is_as_wide_as_the_simulated_values(indicator, settings) -> None:
+    panel = gompertz_panel(people=3_000_000, seed=5)
+    got = estimate(indicator, panel, settings)
+    deaths = poisson_draws(panel.deaths, np.array("isle"), 6000, "test")
+    exposure = np.broadcast_to(panel.exposure, deaths.shape)
+    mix = {
+        name: np.broadcast_to(getattr(panel, name), (6000, 2))
+        for name in ("infant_weight", "infant_ratio")
+    }
+    simulated = replace(panel, deaths=deaths, exposure=exposure, **mix)
+    values = indicator.value(run(simulated, settings))
+    assert (got.high - got.low) / (2 * 1.959964) == pytest.approx(values.std(), rel=0.04)
+
+
+def test_the_level_of_the_settings_is_the_level_of_the_interval() -> None:
+    panel = gompertz_panel(seed=1)
+    narrow = estimate(E0, panel, replace(SETTINGS_1, level=0.5))
+    wide = estimate(E0, panel, SETTINGS_1)
+    assert (wide.high - wide.low) / (narrow.high - narrow.low) == pytest.approx(
+        1.9599639845 / 0.6744897502, rel=1e-9
+    )
+    narrow, wide = (
+        estimate(MEDIAN, panel, replace(SETTINGS_1, level=level), streams=np.array("isle"))
+        for level in (0.5, 0.95)
+    )
+    assert wide.low < narrow.low < narrow.high < wide.high
+
+
+def test_the_variance_of_a_part_against_its_whole_counts_shared_deaths_once() -> None:
+    part, rest = gompertz_panel(seed=1), gompertz_panel(seed=2, level=4e-5)
+    whole = replace(part, deaths=part.deaths + rest.deaths, exposure=part.exposure + rest.exposure)
+    got = difference(E0, part, whole, SETTINGS_1, shared=part.deaths)
+    # written over the two disjoint sets of deaths, of which the whole holds both
+    g, h = (gradient(E0, run(panel, SETTINGS_1)) for panel in (part, whole))
+    own = (g / part.exposure - h / whole.exposure) ** 2 * part.deaths
+    other = (h / whole.exposure) ** 2 * rest.deaths
+    half = 1.959963984540054 * np.sqrt((own + other).sum())
+    assert got.high - got.value == pytest.approx(half, rel=1e-9)
+
+
+def test_two_independent_populations_add_their_variances() -> None:
+    this, that = gompertz_panel(seed=1), gompertz_panel(seed=2, level=4e-5)
+    got = difference(E0, this, that, SETTINGS_1)
+    halves = [(e.high - e.low) / 2 for e in (estimate(E0, p, SETTINGS_1) for p in (this, that))]
+    assert (got.high - got.low) / 2 == pytest.approx(np.hypot(*halves), rel=1e-12)
+
+
+def test_the_same_deaths_on_both_sides_leave_nothing_to_chance() -> None:
+    panel = gompertz_panel(seed=1)
+    got = difference(E0, panel, panel, SETTINGS_1, shared=panel.deaths)
+    assert got.value == 0
+    assert np.isnan([got.low, got.high]).all()
+    assert got.reason == Reason.NO_SAMPLING_INTERVAL
+    names = codes(panel)
+    got = difference(MODE, panel, panel, SETTINGS_1, shared=panel.deaths, streams=(names, names))
+    assert got.value == got.low == got.high == 0
+
+
+def test_shared_deaths_narrow_a_simulated_difference_as_they_narrow_a_delta_one() -> None:
+    part, rest = gompertz_panel(seed=1), gompertz_panel(seed=2)
+    whole = replace(part, deaths=part.deaths + rest.deaths, exposure=part.exposure + rest.exposure)
+    many = replace(SETTINGS_1, draws=4000)
+    names = np.array("part"), np.array("whole")
+    stepped = replace(E0, why_not_smooth="pretended, to compare the two ways", needs=MODE.needs)
+    for shared in (None, part.deaths):
+        delta = difference(E0, part, whole, many, shared=shared)
+        drawn = difference(stepped, part, whole, many, shared=shared, streams=names)
+        width = (drawn.high - drawn.low) / (delta.high - delta.low)
+        assert width == pytest.approx(1, abs=0.06)
+
+
+def test_simulated_limits_do_not_depend_on_how_they_are_cut_into_blocks() -> None:
+    slopes = np.linspace(0.09, 0.11, 9)
+    panel = gompertz_panel(seed=1, slope=slopes, level=0.1 / np.exp(82 * slopes))
+    many = replace(SETTINGS_1, draws=900)  # two populations to a block
+    together = estimate(MEDIAN, panel, many, streams=codes(panel))
+    alone = [estimate(MEDIAN, panel[i], many, streams=codes(panel)[i]) for i in range(9)]
+    assert_array_equal(together.low, [one.low for one in alone])
+
+
+def test_limits_are_linear_quantiles_and_stand_if_few_draws_fail() -> None:
+    rng = np.random.default_rng(0)
+    values = rng.normal(size=(400, 4))
+    values[:4, 1], values[:5, 2], values[:, 3] = np.nan, np.nan, np.nan
+    got = _quantiles(values, 0.95)
+    assert_allclose(got[:, 0], np.quantile(values[:, 0], [0.025, 0.975]), rtol=1e-12)
+    assert_allclose(got[:, 1], np.nanquantile(values[:, 1], [0.025, 0.975]), rtol=1e-12)
+    assert np.isnan(got[:, 2:]).all()  # five in four hundred are too many
+
+
+def test_where_the_peak_is_often_lost_the_value_stands_without_an_interval() -> None:
+    # people so long-lived that the peak is just below the open age
+    grid = GRIDS["abridged"]
+    panel = gompertz_panel(grid, level=0.1 / np.exp(100.5 * 0.1), people=200_000, accidents=0)
+    modelled = SETTINGS["almanac-1-gompertz"]
+    got = estimate(MODE, panel, modelled, streams=codes(panel))
+    assert 95 < got.value < 100
+    assert np.isnan(got.low)
+    assert got.reason == Reason.MODE_AT_EDGE
+
+
+def test_without_streams_a_number_that_is_not_smooth_has_no_interval() -> None:
+    panel = gompertz_panel(seed=1)
+    got = estimate(MODE, panel, SETTINGS_1)
+    assert np.isfinite(got.value)
+    assert np.isnan(got.low)
+    assert got.reason == Reason.NOT_SIMULATED
+    assert difference(MODE, panel, panel, SETTINGS_1).reason == Reason.NOT_SIMULATED
+
+
+def test_no_deaths_behind_a_number_leave_it_without_an_interval() -> None:
+    panel = gompertz_panel(people=100_000)
+    deaths = panel.deaths.copy()
+    deaths[:2] = 0
+    got = estimate(find("5q0"), replace(panel, deaths=deaths), SETTINGS_1)
+    assert got.value == 0
+    assert np.isnan([got.low, got.high]).all()
+    assert got.reason == Reason.NO_DEATHS
+
+
+def test_a_difference_names_what_either_side_lacks() -> None:
+    sound = gompertz_panel(seed=1)
+    few = replace(sound, deaths=sound.deaths / 1000, exposure=sound.exposure / 1000)
+    for this, that in ((sound, few), (few, sound)):
+        got = difference(E0, this, that, SETTINGS_1)
+        assert np.isnan(got.value)
+        assert got.reason == Reason.TOO_FEW_PERSON_YEARS
+
+
+def test_joined_groups_keep_the_covariance_of_what_they_share() -> None:
+    part, rest = gompertz_panel(seed=1), gompertz_panel(seed=2)
+    empty = np.arange(len(part.grid)) == 20
+    part, rest = (
+        replace(p, deaths=np.where(empty, 1.0, p.deaths), exposure=np.where(empty, 0, p.exposure))
+        for p in (part, rest)
+    )
+    same = difference(E0, part, part, SETTINGS_1, shared=part.deaths)
+    assert same.reason == Reason.NO_SAMPLING_INTERVAL
+
+
+def test_grids_must_agree_and_shared_deaths_be_in_both() -> None:
+    panel = gompertz_panel(seed=1)
+    with pytest.raises(ValueError, match="the age groups differ"):
+        difference(E0, panel, gompertz_panel(GRIDS["single"], seed=1), SETTINGS_1)
+    with pytest.raises(ValueError, match="more deaths are shared than one side has"):
+        difference(E0, panel, panel, SETTINGS_1, shared=panel.deaths + 1)
+
+
+def test_no_populations_give_no_figures() -> None:
+    empty = gompertz_panel(slope=np.zeros(0))
+    for indicator in (E0, MODE, MEDIAN):
+        got = estimate(indicator, empty, SETTINGS_1, streams=codes(empty))
+        assert got.value.shape == got.low.shape == got.reason.shape == (0,)
