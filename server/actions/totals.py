@@ -1,6 +1,6 @@
 """Totals of sexes and areas, summed when an upload is committed."""
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, replace
 from functools import reduce
 
@@ -17,6 +17,21 @@ Slice = tuple[str, str, str, str]  # sex, period, measure, cause: what is summed
 class Totalled:
     cells: dict[Key, Vector]  # handed in or summed
     ended: frozenset[Key]  # sums of the base that can no longer be made
+    areas: tuple[Area, ...]  # of the new edition, in tree order
+
+
+def laid_over(
+    handed: Cells,
+    areas: Iterable[Area],
+    *,
+    base_areas: tuple[Area, ...],
+    load: Callable[[tuple[str, ...] | None], Cells],
+) -> Totalled:
+    """What was handed in with its totals, over a base; `load` gives the base's schedules of some
+    periods (None: of all). Raises: Refused, as `merged` and `totalled` do."""
+    listed = merged(areas, base_areas)
+    base = load(periods_needed(handed, listed, base_areas)) if base_areas else {}
+    return totalled(handed, listed, base=base, base_areas=base_areas)
 
 
 def merged(areas: Iterable[Area], into: Iterable[Area]) -> tuple[Area, ...]:
@@ -95,7 +110,7 @@ def totalled(
             period=lost[0].period,
             measure=lost[0].measure,
         )
-    return Totalled(cells, frozenset(sums_before - cells.keys()))
+    return Totalled(cells, frozenset(sums_before - cells.keys()), areas)
 
 
 def total(cells: list[Vector]) -> Vector:

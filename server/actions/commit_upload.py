@@ -1,0 +1,131 @@
+"""Make an edition of a checked upload."""
+
+import datetime as dt
+import json
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from server.accounts.viewer import Right, Viewer
+from server.actions import totals
+from server.intake.mapping import Mapping
+from server.intake.parsing import READER, Handed, Parsed, parse
+from server.intake.problems import Problem
+from server.store import areas, editions, schedules, uploads
+from server.store.connect import Session, transaction
+from server.store.errors import Refused, Stale
+from server.store.records import Basis, Change, Edition, Selection, Upload
+
+
+@dataclass(frozen=True, slots=True)
+class Sound:
+    """An upload that was mapped and checked and has no errors."""
+
+    upload: Upload
+    basis: Basis
+    base: int
+    warnings: int
+
+
+def commit_upload(
+    session: Session,
+    *,
+    upload_id: int,
+    note: str,
+    by: Viewer,
+    now: dt.datetime,
+    replace: bool = False,
+) -> Edition:
+    """The newest standing edition and the upload, or with `replace` the upload alone, as a new
+    edition. All or nothing.
+
+    Raises: NotAllowed; Missing; Stale where another edition stands than at the check; Refused
+    where the upload is an edition already, is not mapped or checked, has errors, has warnings and
+    the note is empty, or its areas form no tree.
+    """
+    by.require(Right.COMMIT)
+    sound = require_sound(uploads.find(session, upload_id))
+    if sound.warnings and not note.strip():
+        raise Refused(
+            "Upload {upload} has {count} warnings and no note. Look at each; then say in the note "
+            "why the figures may stand.",
+            upload=upload_id,
+            count=sound.warnings,
+        )
+    standing = editions.newest_standing(session, sound.upload.collection)
+    if (number := standing.number if standing else 0) != sound.base:
+        raise Stale(sound.base, number)
+    change = _change(session, sound, read(session, sound.upload), replace=replace)
+    prepared = editions.prepare(session, change)
+    with transaction(session):
+        editions.require_base(session, change.collection, change.base)
+        return editions.write(session, prepared, by=by.name, note=note.strip(), at=now)
+
+
+def require_sound(upload: Upload) -> Sound:
+    """The upload as one that may become an edition. Raises: Refused, saying what is missing."""
+    if upload.edition is not None:
+        raise Refused(
+            "Upload {upload} is edition {edition} already.",
+            upload=upload.id,
+            edition=upload.edition,
+        )
+    if upload.basis is None or upload.base is None or upload.reader != READER:
+        raise Refused(
+            "Upload {upload} has not been checked as it stands now. Map its columns, state the "
+            "basis and run the checks.",
+            upload=upload.id,
+        )
+    problems = [Problem.from_json(stored) for stored in json.loads(upload.report)]
+    _require_no_errors(upload, problems)
+    return Sound(upload, upload.basis, upload.base, warnings=len(problems))
+
+
+def read(session: Session, upload: Upload) -> Parsed:
+    """The kept bytes, read again with the kept mapping. Raises: Refused where they have errors."""
+    parsed = parse(
+        [
+            Handed(
+                file.role,
+                file.name,
+                uploads.file_bytes(session, upload.id, file.role),
+                Mapping.from_json(file.mapping),
+            )
+            for file in upload.files
+        ]
+    )
+    _require_no_errors(upload, parsed.problems)
+    return parsed
+
+
+def _change(session: Session, sound: Sound, parsed: Parsed, *, replace: bool) -> Change:
+    code, base = sound.upload.collection, 0 if replace else sound.base
+    summed = totals.laid_over(
+        parsed.cells,
+        parsed.areas,
+        base_areas=areas.listing(session, code, base) if base else (),
+        load=lambda periods: schedules.load(
+            session, code, base, Selection(periods=periods, cause=None)
+        ),
+    )
+    return Change(
+        collection=code,
+        base=sound.base,
+        cells=summed.cells,
+        areas=summed.areas,
+        basis=sound.basis,
+        upload=sound.upload.id,
+        replace=replace,
+        ended=summed.ended,
+    )
+
+
+def _require_no_errors(upload: Upload, problems: Sequence[Problem]) -> None:
+    errors = [problem for problem in problems if problem.severity == "error"]
+    if errors:
+        raise Refused(
+            "Upload {upload} has {count} errors and cannot become an edition. The first: {first} "
+            "Correct the file and hand it in again.",
+            upload=upload.id,
+            count=len(errors),
+            first=str(errors[0]),
+        )

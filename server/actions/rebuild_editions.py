@@ -1,0 +1,124 @@
+"""Make every edition anew from the kept bytes, and compare: nothing is written."""
+
+import hashlib
+from dataclasses import dataclass, field
+
+from server.accounts.viewer import Right, Viewer
+from server.actions import totals
+from server.actions.commit_upload import read
+from server.intake.parsing import READER
+from server.store import areas, collections, digests, editions, schedules, uploads
+from server.store.connect import Session
+from server.store.errors import Refused
+from server.store.records import Area, Basis, Edition, Key, Selection, Upload, Vector
+
+EVERYTHING = Selection(cause=None)
+
+
+@dataclass(frozen=True, slots=True)
+class Rebuilt:
+    """One edition: its recorded hash, and what storage and files give now."""
+
+    number: int
+    recorded: str
+    stored: str  # hash of the schedules as they stand in the database
+    reread: str  # hash of the edition made anew from its files; empty where it cannot be
+    reason: str = ""  # catalogue text: why it cannot be
+    values: dict[str, object] = field(default_factory=dict)  # fill the reason
+
+    @property
+    def same(self) -> bool:
+        return self.recorded == self.stored == self.reread
+
+
+@dataclass(frozen=True, slots=True)
+class _Content:
+    """What an edition holds, made anew."""
+
+    cells: dict[Key, Vector]
+    areas: tuple[Area, ...]
+    basis: Basis
+
+    @property
+    def digest(self) -> str:
+        return digests.of_edition(
+            (
+                digests.of_basis(self.basis),
+                *map(digests.of_area, self.areas),
+                *(digests.of_schedule(key, cell) for key, cell in self.cells.items()),
+            )
+        )
+
+
+def rebuild_editions(session: Session, *, collection: str, by: Viewer) -> tuple[Rebuilt, ...]:
+    """Every edition of the collection in the order they were made, from its files, their mappings
+    and its base, by the same steps as a commit.
+
+    Raises: NotAllowed; Missing for the collection.
+    """
+    by.require(Right.READ)
+    collections.find(session, collection)
+    in_order = editions.listing(session, collection)[::-1]
+    contents: dict[int, _Content] = {}
+    report = []
+    for place, edition in enumerate(in_order):
+        stored = _stored(session, collection, edition).digest
+        try:
+            made = contents[edition.number] = _anew(session, edition, contents)
+            report.append(Rebuilt(edition.number, edition.digest, stored, made.digest))
+        except Refused as refused:
+            why = (refused.text, refused.values)
+            report.append(Rebuilt(edition.number, edition.digest, stored, "", *why))
+        still_needed = {later.base for later in in_order[place + 1 :]}
+        contents = {number: made for number, made in contents.items() if number in still_needed}
+    return tuple(report)
+
+
+def _stored(session: Session, collection: str, edition: Edition) -> _Content:
+    return _Content(
+        schedules.load(session, collection, edition.number, EVERYTHING),
+        areas.listing(session, collection, edition.number),
+        edition.basis,
+    )
+
+
+def _anew(session: Session, edition: Edition, contents: dict[int, _Content]) -> _Content:
+    """Raises: Refused where the files, their reading or the base are not to be had."""
+    upload, basis = _readable(session, edition)
+    base = _Content({}, (), basis)
+    if edition.base and not edition.replaces:
+        if edition.base not in contents:
+            raise Refused("Its base, edition {base}, could not be made anew.", base=edition.base)
+        base = contents[edition.base]
+
+    def load(periods: tuple[str, ...] | None) -> dict[Key, Vector]:
+        if periods is None:
+            return base.cells
+        return {key: cell for key, cell in base.cells.items() if key.period in periods}
+
+    parsed = read(session, upload)
+    summed = totals.laid_over(parsed.cells, parsed.areas, base_areas=base.areas, load=load)
+    kept = {key: cell for key, cell in base.cells.items() if key not in summed.ended}
+    return _Content(kept | summed.cells, summed.areas, basis)
+
+
+def _readable(session: Session, edition: Edition) -> tuple[Upload, Basis]:
+    upload = uploads.find(session, edition.upload) if edition.upload else None
+    if upload is None or upload.basis is None:
+        raise Refused("It was not made of an upload.")
+    if upload.reader != READER:
+        raise Refused(
+            "It was read by {then}; this version reads with {now}, which may read otherwise.",
+            then=upload.reader,
+            now=READER,
+        )
+    for file in upload.files:
+        content = uploads.file_bytes(session, upload.id, file.role)
+        if hashlib.sha256(content).hexdigest() != file.sha256:
+            raise Refused(
+                "The kept file {file} of upload {upload} is damaged: its SHA-256 is no longer the "
+                "one recorded. Restore it from a backup.",
+                file=file.name,
+                upload=upload.id,
+            )
+    return upload, upload.basis
