@@ -95,7 +95,7 @@ def of_table(address: str, key: str) -> str:
 
 def symbols(text: str) -> Markup:
     """Text in which symbols such as m_x are set with the letter below the line."""
-    return Markup(_SYMBOL.sub(r"\1<sub>\2</sub>", escape(text)))
+    return Markup(_SYMBOL.sub(r"\1<sub>\2</sub>", str(escape(text))))
 
 
 def json_block(value: object) -> Markup:
