@@ -10,11 +10,10 @@ from server.cli.opened import opened
 from server.cli.options import Commands, Run, add_command, add_note
 from server.cli.tables import add_form, show
 from server.config import Config
-from server.pages import collections as collections_page
-from server.pages import contents_tables
+from server.pages import collections, editions
+from server.pages.page import Page
 from server.pages.twins import twin
 from server.sentences.text import _
-from server.store import collections, editions
 
 
 def add(commands: Commands) -> None:
@@ -54,14 +53,12 @@ def add(commands: Commands) -> None:
 
 def _list(asked: argparse.Namespace, config: Config) -> int:
     with opened(config) as session:
-        if asked.collection is None:
-            found = twin(collections_page.build(session))
-        else:
-            collection = collections.find(session, asked.collection)
-            all_ = editions.listing(session, collection.code)
-            newest = editions.newest_standing(session, collection.code)
-            found = contents_tables.twin(collection, all_, newest.number if newest else None)
-    show(found, asked.form)
+        page: Page = (
+            editions.build(session, asked.collection)
+            if asked.collection
+            else collections.build(session)
+        )
+    show(twin(page), asked.form)
     return 0
 
 

@@ -73,11 +73,16 @@ def build(session: Session, heading: Heading, question: ContentsQuestion) -> Con
         questions=_questions(heading, question, held, choice) if choice else (),
         choice=choice,
         basis=frames.basis(edition.basis),
-        editions=contents_tables.listing(
-            collection, editions.listing(session, collection.code), heading.newest
-        ),
+        editions=_editions(session, heading),
         standing=_standing(heading),
     )
+
+
+def _editions(session: Session, heading: Heading) -> contents_tables.Listing:
+    collection = heading.collection
+    all_ = editions.listing(session, collection.code)
+    table = contents_tables.editions(collection, all_, heading.newest)
+    return contents_tables.Listing((table,), contents_tables.editions_twins(collection.code))
 
 
 def _frame(heading: Heading, question: ContentsQuestion) -> Frame:

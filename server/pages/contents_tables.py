@@ -6,7 +6,6 @@ from dataclasses import dataclass, field
 from engine import settings as named
 from engine.indicators import INDICATORS
 from server.exports.table import Cell, Column, Row, Table
-from server.exports.twin import Twin
 from server.pages import cells
 from server.results.contents import Contents
 from server.results.questions import PopulationYear, PopulationYearQuestion, address
@@ -69,20 +68,13 @@ def _address(found: Contents, newest: Series, index: int) -> str:
     )
 
 
-def listing(collection: Collection, all_: Iterable[Edition], newest: int | None) -> Listing:
+def editions_twins(collection: str) -> dict[str, str]:
+    """Addresses of the list of editions as a file."""
+    return {twin: f"/c/{collection}/editions.{twin}" for twin in ("csv", "xlsx", "json")}
+
+
+def editions(collection: Collection, all_: Iterable[Edition], newest: int | None) -> Table:
     """All editions of a collection, newest first. It changes as editions are made and withdrawn."""
-    twins = {twin: f"/c/{collection.code}/editions.{twin}" for twin in ("csv", "xlsx", "json")}
-    return Listing((_editions(collection, all_, newest),), twins)
-
-
-def twin(collection: Collection, all_: Iterable[Edition], newest: int | None) -> Twin:
-    """The same list as a file."""
-    table = _editions(collection, all_, newest)
-    about = ((_("Data owner"), collection.owner),)
-    return Twin(table.title, f"/c/{collection.code}/editions", about, (), (), (table,))
-
-
-def _editions(collection: Collection, all_: Iterable[Edition], newest: int | None) -> Table:
     return Table(
         "editions",
         _("Editions of {collection}", collection=collection.name),

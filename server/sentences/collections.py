@@ -36,8 +36,10 @@ def edition(number: int, made: dt.date, note: str) -> str:
 
 
 def nothing_stands(code: str) -> Sentence:
+    """No edition can be gone to: what there is instead."""
     return phrase(
-        _("No edition of it stands. {upload} to make one, or see {drafts}."),
+        _("No edition of it stands. {upload} to make one, or look at {uploads} and {editions}."),
         upload=Piece(_("Upload files"), f"/uploads/new?collection={code}"),
-        drafts=Piece(_("what has been uploaded"), "/uploads"),
+        uploads=Piece(_("what has been uploaded"), "/uploads"),
+        editions=Piece(_("editions that were withdrawn"), f"/c/{code}/editions"),
     )

@@ -72,6 +72,30 @@ def superseded(shown_: int, newer: Piece) -> Sentence:
     )
 
 
+def editions(collection: str, count: int, standing_: int | None) -> Sentence:
+    """How many there are and which one stands."""
+    if not count:
+        return phrase(_("{collection} has no edition yet."), collection=collection)
+    if standing_ is None:
+        return phrase(
+            n_(
+                "{collection} has one edition, and it was withdrawn.",
+                "{collection} has {count} editions, and all of them were withdrawn.",
+                count,
+                collection=collection,
+            )
+        )
+    return phrase(
+        n_(
+            "{collection} has one edition, and it stands.",
+            "{collection} has {count} editions; edition {number} stands.",
+            count,
+            collection=collection,
+            number=standing_,
+        )
+    )
+
+
 def standing(*, stands: bool, withdrawn: dt.date | None) -> str:
     """Stands, superseded or withdrawn (and when); in the table of editions."""
     if withdrawn is not None:

@@ -1,0 +1,26 @@
+"""How figures are made, and what the words mean."""
+
+from fastapi import APIRouter, Request, Response
+
+from server.accounts.viewer import Right
+from server.pages import methods, words
+from server.routes.asking import READ, needs
+from server.routes.plain import form, keys
+from server.web.render import respond
+
+router = APIRouter(dependencies=[needs(Right.READ)])
+
+
+@router.api_route("/methods", methods=READ)
+@router.api_route("/methods.{twin}", methods=READ)
+def show_methods(request: Request, twin: str = "") -> Response:
+    given = keys(request, *(("table",) if twin == "csv" else ()))
+    return respond(
+        request, methods.build, tag_parts=(), form=form(twin), table=given.get("table", "")
+    )
+
+
+@router.api_route("/words", methods=READ)
+def show_words(request: Request) -> Response:
+    keys(request)
+    return respond(request, words.build, tag_parts=())
