@@ -1,7 +1,6 @@
 """Make an edition of a checked upload."""
 
 import datetime as dt
-import json
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -10,6 +9,7 @@ from server.actions import totals
 from server.intake.mapping import Mapping
 from server.intake.parsing import READER, Handed, Parsed, parse
 from server.intake.problems import Problem
+from server.intake.report import Report
 from server.store import areas, editions, schedules, uploads
 from server.store.connect import Session, transaction
 from server.store.errors import Refused, Stale
@@ -75,7 +75,7 @@ def require_sound(upload: Upload) -> Sound:
             "basis and run the checks.",
             upload=upload.id,
         )
-    problems = [Problem.from_json(stored) for stored in json.loads(upload.report)]
+    problems = Report.from_json(upload.report).problems
     _require_no_errors(upload, problems)
     return Sound(upload, upload.basis, upload.base, warnings=len(problems))
 

@@ -1,4 +1,4 @@
-"""How the bytes of a delimited file fall into lines and fields, before anything is believed of them."""
+"""How the bytes of a delimited file fall into lines and fields."""
 
 import csv
 import io
@@ -76,9 +76,7 @@ def _outside_quotes(line: str) -> str:
     return "".join(line.split('"')[::2])
 
 
-def _lines(
-    body: bytes, delimiter: str
-) -> tuple[NDArray[np.int64], NDArray[np.int32], int]:
+def _lines(body: bytes, delimiter: str) -> tuple[NDArray[np.int64], NDArray[np.int32], int]:
     """Ends of the lines, fields in each, and the row of the first stray quotation mark.
 
     Line feeds and delimiters inside quotes do not count; a doubled quote closes and opens at once.

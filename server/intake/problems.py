@@ -1,7 +1,7 @@
 """What intake found wrong: where, what was found, what was expected, what to do.
 
-The texts of a problem are texts of the catalogue with their {values} beside them, so that a page can
-put them into its reader's language; in plain English they are `found`, `expected` and `remedy`.
+The texts of a problem are texts of the catalogue with their {values} beside them, so that a page
+can put them into its reader's language; in plain English they are `found`, `expected`, `remedy`.
 """
 
 from collections.abc import Callable, Mapping
@@ -10,12 +10,18 @@ from typing import Literal, Protocol, cast
 
 Severity = Literal["error", "warning"]
 Value = str | int | float
+Show = Callable[[int | float], str]
 
 
 class Translate(Protocol):
     """The catalogue's own function, or `plain`."""
 
     def __call__(self, text: str, /, **values: object) -> str: ...
+
+
+def figure(value: int | float) -> str:
+    """A number as a file would write it."""
+    return f"{value:.15g}"
 
 
 def plain(text: str, /, **values: object) -> str:
@@ -36,11 +42,12 @@ class Kind:
     source: str = ""  # where the rule is published
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Fault:
     """A place where a check failed; with its kind and file it becomes a problem."""
 
     column: str = ""
+    file: str = ""  # empty: the file the check was asked about
     row: int | None = None  # as in the file, the heading being row 1
     last_row: int | None = None
     rows: int = 1  # how many rows share it
@@ -71,14 +78,21 @@ class Problem:
     values: Mapping[str, Value]
 
     @classmethod
-    def of(cls, kind: Kind, file: str, fault: Fault) -> "Problem":
-        texts = Texts(kind.found, kind.expected, kind.remedy)
-        where = (fault.row, fault.last_row, fault.column, fault.rows, fault.others)
-        return cls(kind.key, kind.severity, file, *where, texts, dict(fault.values))
+    def of(cls, kind: Kind, fault: Fault, file: str = "") -> "Problem":
+        return cls(
+            key=kind.key,
+            severity=kind.severity,
+            file=fault.file or file,
+            row=fault.row,
+            last_row=fault.last_row,
+            column=fault.column,
+            rows=fault.rows,
+            others=fault.others,
+            texts=Texts(kind.found, kind.expected, kind.remedy),
+            values=dict(fault.values),
+        )
 
-    def worded(
-        self, translate: Translate = plain, show: Callable[[int | float], str] = str
-    ) -> Texts:
+    def worded(self, translate: Translate = plain, show: Show = figure) -> Texts:
         """Found, expected and remedy in the reader's language; `show` prints the numbers."""
         values = {k: v if isinstance(v, str) else show(v) for k, v in self.values.items()}
         found = translate(self.texts.found, **values)
@@ -92,27 +106,22 @@ class Problem:
             translate(self.texts.remedy, **values),
         )
 
-    def rows_worded(
-        self, translate: Translate = plain, show: Callable[[int | float], str] = str
-    ) -> str:
-        """"212", "418 to 430" or "9 rows between 12 and 301"; empty where no row is to blame."""
+    def rows_worded(self, translate: Translate = plain, show: Show = figure) -> str:
+        """ "row 212", "rows 418 to 430" or "9 rows between 12 and 301"; empty where no row is to
+        blame."""
         if self.row is None:
             return ""
         if self.last_row is None or self.last_row == self.row:
-            return show(self.row)
+            return translate("row {row}", row=show(self.row))
         ends = {"first": show(self.row), "last": show(self.last_row)}
         if self.rows == self.last_row - self.row + 1:
-            return translate("{first} to {last}", **ends)
+            return translate("rows {first} to {last}", **ends)
         return translate("{count} rows between {first} and {last}", count=show(self.rows), **ends)
 
-    def sentence(
-        self, translate: Translate = plain, show: Callable[[int | float], str] = str
-    ) -> str:
+    def sentence(self, translate: Translate = plain, show: Show = figure) -> str:
         """The whole problem in one line, as a terminal or an error page prints it."""
         words = self.worded(translate, show)
-        place = [self.file]
-        if rows := self.rows_worded(translate, show):
-            place.append(translate("row {rows}", rows=rows))
+        place = [self.file, self.rows_worded(translate, show)]
         if self.column:
             place.append(translate("column {column}", column=self.column))
         return translate(

@@ -1,12 +1,13 @@
 """Rows put in order of area, sex, year and age, and cut into vectors over age."""
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
 
 from engine.ages import AgeGrid, Array
 from server.intake.cells import Cells, Flags, Ints
+from server.intake.problems import Fault, Value
 
 MEASURES = {"deaths": "deaths", "population": "person_years", "births": "births"}
 DECIMALS = 6  # counts are rounded to them
@@ -49,6 +50,18 @@ class Block:
     provisional: Flags  # [line]
     values: Array  # [line, age]
     row: Ints  # [line, age], row in the file
+
+    def fault(self, rows: Ints, values: Mapping[str, Value]) -> Fault:
+        """A fault in these rows of the file."""
+        rows = np.atleast_1d(rows)
+        return Fault(
+            column=self.column,
+            file=self.file,
+            row=int(rows.min()),
+            last_row=int(rows.max()),
+            rows=rows.size,
+            values=values,
+        )
 
     def pick(self, lines: Flags | Ints) -> "Block":
         return replace(
@@ -129,7 +142,7 @@ def blocks(rows: Ordered, spoiled: Ints) -> Iterator[Block]:
 
 
 def _grids(start: Ints, begins: Ints) -> Iterator[tuple[tuple[int, ...], Ints]]:
-    """Each grid found with the lines that have it: same length, same sum of weights, same starts."""
+    """Each grid found, with the lines that have it: told apart by a sum of weights, then proved."""
     weights = np.random.default_rng(0).integers(1, 2**62, 256)
     lengths = np.diff(np.append(begins, len(start)))
     marks = np.add.reduceat(weights[start], begins) * 1024 + lengths

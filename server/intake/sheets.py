@@ -1,9 +1,9 @@
-"""A file as columns of codes and numbers: every distinct text is read once, every row by its code."""
+"""A file as columns of codes and numbers: a text is read once, however many rows have it."""
 
 import io
 import math
 import re
-from collections.abc import Callable, Sequence
+from collections.abc import Callable
 from dataclasses import dataclass
 from typing import TypeVar
 
@@ -94,7 +94,7 @@ def _table(file: Layout, place: dict[str, int], texts: set[int]) -> pd.DataFrame
     first = file.first_rows(1)[0]
     numbers = set(place.values()) - texts
     words = {column for column in numbers if first[column].strip().casefold() in ("true", "false")}
-    types = {column: "category" for column in texts | words}
+    types = dict.fromkeys(texts | words, "category")
     try:
         return _read(file, types | dict.fromkeys(numbers - words, "float64"))
     except ValueError:
@@ -143,5 +143,3 @@ def _number(text: str) -> float:
 def _kept_numbers(found: Numbers, kept: NDArray[np.bool_]) -> Numbers:
     texts = found.texts and Labels(found.texts.codes[kept], found.texts.texts)
     return Numbers(found.values[kept], texts)
-
-

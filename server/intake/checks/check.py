@@ -29,8 +29,8 @@ class Check(Kind, Generic[Subject]):
 
     find: Callable[[Subject], Iterable[Fault]]
 
-    def problems(self, subject: Subject, file: str) -> list[Problem]:
-        return [Problem.of(self, file, fault) for fault in listed(self.find(subject))]
+    def problems(self, subject: Subject, file: str = "") -> list[Problem]:
+        return [Problem.of(self, fault, file) for fault in listed(self.find(subject))]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -41,7 +41,7 @@ class RowCheck(Kind, Generic[Subject]):
 
     def problems(self, marks: Marks, rows: NDArray[np.int64], file: str) -> list[Problem]:
         """`rows` are the row numbers in the file of all rows marked over."""
-        return [Problem.of(self, file, fault) for fault in gathered(marks, rows[marks.failing])]
+        return [Problem.of(self, fault, file) for fault in gathered(marks, rows[marks.failing])]
 
 
 def listed(faults: Iterable[Fault]) -> list[Fault]:
@@ -62,7 +62,7 @@ def listed(faults: Iterable[Fault]) -> list[Fault]:
     ]
 
 
-def gathered(marks: Marks, rows: NDArray[np.int64]) -> list[Fault]:
+def gathered(marks: Marks, rows: NDArray[np.int64], file: str = "") -> list[Fault]:
     """Faults by what was found, in the order of their first rows; at most LISTED and one more."""
     if not len(rows):
         return []
@@ -79,6 +79,7 @@ def gathered(marks: Marks, rows: NDArray[np.int64]) -> list[Fault]:
     return listed(
         Fault(
             column=marks.column,
+            file=file,
             row=int(first),
             last_row=int(last),
             rows=int(count),

@@ -29,7 +29,7 @@ def _missing(mapped: Mapped) -> Iterator[Fault]:
     columns = ", ".join(mapped.file.columns)[:200]
     for field in needed:
         if not mapped.mapping.column(field):
-            yield Fault(field, row=1, values={"field": field, "columns": columns})
+            yield Fault(column=field, row=1, values={"field": field, "columns": columns})
 
 
 def _unknown(mapped: Mapped) -> Iterator[Fault]:
@@ -37,14 +37,14 @@ def _unknown(mapped: Mapped) -> Iterator[Fault]:
     for field in COLUMNS:
         column = mapped.mapping.column(field)
         if column and column not in mapped.file.columns:
-            yield Fault(column, row=1, values={"field": field, "columns": columns})
+            yield Fault(column=column, row=1, values={"field": field, "columns": columns})
 
 
 def _no_area(mapped: Mapped) -> Iterator[Fault]:
     mapping = mapped.mapping
     given = mapping.area or mapping.area_name or mapping.only_area or mapping.only_area_name
     if not given:
-        yield Fault("area", row=1)
+        yield Fault(column="area", row=1)
 
 
 def _bad_setting(mapped: Mapped) -> Iterator[Fault]:
@@ -104,7 +104,63 @@ CHECKS: tuple[Check[Mapped], ...] = (
 )
 
 
+@dataclass(frozen=True, slots=True)
+class Said:
+    """What files and mappings of an upload say of areas."""
+
+    names: dict[str, tuple[str, ...]]  # of each code
+    wholes: tuple[str, ...]
+    codes: tuple[str, ...]
+    delivered: tuple[str, ...]
+
+
+def _names(said: Said) -> Iterator[Fault]:
+    for code, names in sorted(said.names.items()):
+        if len(names) > 1:
+            yield Fault(values={"area": code, "names": ", ".join(names)[:200], "first": names[0]})
+
+
+def _wholes(said: Said) -> Iterator[Fault]:
+    if len(said.wholes) > 1:
+        yield Fault(values={"wholes": ", ".join(said.wholes)})
+
+
+def _unknown_delivered(said: Said) -> Iterator[Fault]:
+    for code in said.delivered:
+        if code not in said.codes:
+            yield Fault(values={"area": code, "codes": ", ".join(said.codes)[:200]})
+
+
+AREA_CHECKS: tuple[Check[Said], ...] = (
+    Check(
+        key="area_names_differ",
+        severity="warning",
+        meaning="One code of an area comes with several names.",
+        found="{area} named {names}",
+        expected="one name for each code",
+        remedy="“{first}” will be used; correct the file if two areas share the code.",
+        find=_names,
+    ),
+    Check(
+        key="wholes_differ",
+        severity="error",
+        meaning="The mappings of the files name different areas as the whole.",
+        found="{wholes}",
+        expected="the same whole in every file",
+        remedy="Correct the mapping.",
+        find=_wholes,
+    ),
+    Check(
+        key="unknown_delivered",
+        severity="error",
+        meaning="An area is declared as delivered that is not in the files.",
+        found="{area}",
+        expected="one of the areas {codes}",
+        remedy="Correct the mapping.",
+        find=_unknown_delivered,
+    ),
+)
+
+
 def problems_of(mapped: Mapped) -> list[Problem]:
-    return [
-        problem for check in CHECKS for problem in check.problems(mapped, mapped.file.name)
-    ]
+    return [problem for check in CHECKS for problem in check.problems(mapped, mapped.file.name)]

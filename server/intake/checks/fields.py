@@ -73,6 +73,16 @@ def _blank(numbers: Numbers) -> Flags:
     return numbers.texts.codes < 0
 
 
+# checks that leave the row's place among the ages known
+OF_NUMBERS = {
+    "thousands_separator",
+    "decimal_comma",
+    "not_a_number",
+    "missing_count",
+    "negative_count",
+    "not_finite",
+}
+
 CHECKS: tuple[RowCheck[Cells], ...] = (
     RowCheck(
         key="unreadable_year",

@@ -59,7 +59,7 @@ def _blank_heading(file: Layout) -> Iterator[Fault]:
 def _doubled_heading(file: Layout) -> Iterator[Fault]:
     for column, count in list(Counter(file.columns).items())[:MOST_COLUMNS]:
         if column and count > 1:
-            yield Fault(column, row=1, values={"count": count})
+            yield Fault(column=column, row=1, values={"count": count})
 
 
 def _too_many_columns(file: Layout) -> Iterator[Fault]:
@@ -79,8 +79,12 @@ def _uneven_rows(file: Layout) -> Iterator[Fault]:
     counts = file.fields[wrong]
     for count in list(dict.fromkeys(counts.tolist()))[:LISTED]:
         lines = wrong[counts == count]
-        rows = (int(lines[0]) + 2, int(lines[-1]) + 2, len(lines))
-        yield Fault("", *rows, values={"count": count, "columns": len(file.columns)})
+        yield Fault(
+            row=int(lines[0]) + 2,
+            last_row=int(lines[-1]) + 2,
+            rows=len(lines),
+            values={"count": count, "columns": len(file.columns)},
+        )
 
 
 CHECKS: tuple[Check[Layout], ...] = (

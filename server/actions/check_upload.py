@@ -1,0 +1,48 @@
+"""Read a mapped draft, run every check, and keep the report with the edition that stood then."""
+
+from server.intake.mapping import Mapping
+from server.intake.parsing import READER, Handed, parse
+from server.intake.report import Report
+from server.store import editions, uploads
+from server.store.connect import Session, transaction
+from server.store.errors import Refused
+from server.store.records import Upload
+
+
+def check_upload(session: Session, *, upload_id: int) -> Report:
+    """All problems at once, and what the upload would become. Nothing becomes an edition here.
+
+    Raises: Missing; Refused where a file has no mapping yet, or the upload is an edition already.
+    """
+    upload = uploads.find(session, upload_id)
+    report = Report.of(parse(handed(session, upload)))
+    standing = editions.newest_standing(session, upload.collection)
+    with transaction(session):
+        uploads.set_report(
+            session,
+            upload_id,
+            report=report.to_json(),
+            reader=READER,
+            base=standing.number if standing else 0,
+        )
+    return report
+
+
+def handed(session: Session, upload: Upload) -> list[Handed]:
+    """The files of an upload as they were handed in, with their mappings."""
+    for file in upload.files:
+        if not file.mapping:
+            raise Refused(
+                "The columns of {file} are not mapped yet. Say which column is which, then check "
+                "the upload.",
+                file=file.name,
+            )
+    return [
+        Handed(
+            file.role,
+            file.name,
+            uploads.file_bytes(session, upload.id, file.role),
+            Mapping.from_json(file.mapping),
+        )
+        for file in upload.files
+    ]

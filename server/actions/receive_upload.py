@@ -1,0 +1,74 @@
+"""Take files in, byte for byte, as a draft."""
+
+import datetime as dt
+from collections import Counter
+from collections.abc import Sequence
+
+from server.accounts.viewer import Right, Viewer
+from server.intake.mapping import ROLES
+from server.store import uploads
+from server.store.connect import Session, transaction
+from server.store.errors import Refused
+from server.store.records import Upload
+
+LARGEST = 60_000_000  # bytes of all files of an upload, where the caller sets no limit of its own
+LONGEST_NAME = 120
+
+
+class FileTooLarge(Refused):
+    """The files together are over the limit."""
+
+
+def receive_upload(
+    session: Session,
+    *,
+    collection: str,
+    files: Sequence[tuple[str, str, bytes]],
+    by: Viewer,
+    now: dt.datetime,
+    limit: int = LARGEST,
+) -> Upload:
+    """Keep the files, each (role, name, content). Nothing is read yet.
+
+    Raises: NotAllowed; Missing for the collection; FileTooLarge; Refused where no file was handed
+    in, a role is unknown or two files have the same one.
+    """
+    by.require(Right.UPLOAD)
+    _require_roles([role for role, _, _ in files])
+    size = sum(len(content) for _, _, content in files)
+    if size > limit:
+        raise FileTooLarge(
+            "The files have {size} bytes, but an upload may have at most {limit}. Split them by "
+            "years and upload the parts one after the other.",
+            size=size,
+            limit=limit,
+        )
+    named = [(role, _name(name) or f"{role}.csv", content) for role, name, content in files]
+    with transaction(session):
+        return uploads.receive(session, collection=collection, files=named, by=by.name, at=now)
+
+
+def _require_roles(roles: list[str]) -> None:
+    if not roles:
+        raise Refused("No file was handed in. Choose a file of deaths and one of population.")
+    for role, count in Counter(roles).items():
+        if role not in ROLES:
+            raise Refused(
+                "A file was handed in as {role}, which is no kind of file. It must be one of: "
+                "{known}.",
+                role=role,
+                known=", ".join(ROLES),
+            )
+        if count > 1:
+            raise Refused(
+                "{count} files were handed in as {role}, but an upload has one of each kind. Join "
+                "them, or upload one after the other.",
+                count=count,
+                role=role,
+            )
+
+
+def _name(name: str) -> str:
+    """The last part of a path, printable and not too long: names are shown, never opened."""
+    last = name.replace("\\", "/").rsplit("/", 1)[-1]
+    return "".join(sign for sign in last if sign.isprintable()).strip()[-LONGEST_NAME:]

@@ -1,0 +1,174 @@
+"""Checks of counts against the years around them and against births."""
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+import numpy as np
+
+from engine.ages import Array
+from server.intake.cells import Ints
+from server.intake.checks.check import Check
+from server.intake.ledger import Ledger, Line
+from server.intake.problems import Fault
+
+
+@dataclass(frozen=True, slots=True)
+class Limit:
+    """What counts as a jump: a share of the expected count, and that many of its square roots."""
+
+    share: float
+    roots: float
+
+
+AT_ALL_AGES = {"deaths": Limit(0.30, 6), "person_years": Limit(0.20, 6)}
+AT_AN_AGE = {"deaths": Limit(0.50, 8), "person_years": Limit(0.50, 8)}
+NEIGHBOURS = (-2, -1, 1, 2)  # years looked at, as far as the series has them
+
+
+def _expected(values: Array, place: Ints) -> Array:
+    """Median of the neighbouring years, [line, age]; nan where fewer than two are there."""
+    around = np.full((len(NEIGHBOURS), *values.shape), np.nan)
+    lines = np.arange(len(place))
+    for number, step in enumerate(NEIGHBOURS):
+        other = lines + step
+        inside = (other >= 0) & (other < len(place))
+        other = np.where(inside, other, lines)
+        near = inside & (place[other] // 10_000 == place // 10_000)
+        near &= np.abs(place[other] - place) <= 2
+        around[number, near] = values[other[near]]
+    around.sort(axis=0)  # nan last
+    count = np.sum(~np.isnan(around[:, :, 0]), axis=0)
+    low = np.maximum(count - 1, 0) // 2
+    high = count // 2
+    middle = (around[np.minimum(low, 3), lines] + around[np.minimum(high, 3), lines]) / 2
+    middle[count < 2] = np.nan
+    return middle
+
+
+def _jumps(
+    values: Array, expected: Array, limit: Limit
+) -> "np.ndarray[tuple[int, ...], np.dtype[np.bool_]]":
+    off = np.abs(values - expected)
+    with np.errstate(invalid="ignore"):
+        return (off > limit.share * expected) & (off > limit.roots * np.sqrt(expected + 1))
+
+
+def _of_measure(ledger: Ledger, measure: str) -> Iterator[Fault]:
+    """One fault for each area, sex and year: at all ages together, or at the worst age."""
+    for block in ledger.of(measure):
+        expected = _expected(block.values, block.place)
+        total = block.values.sum(axis=-1)
+        total_expected = _expected(total[:, None], block.place)[:, 0]
+        all_ages = _jumps(total, total_expected, AT_ALL_AGES[measure])
+        one_age = _jumps(block.values, expected, AT_AN_AGE[measure])
+        for line in np.flatnonzero(all_ages | one_age.any(axis=-1)).tolist():
+            if all_ages[line]:
+                age, label, found, usual = 0, "all ages", total[line], total_expected[line]
+            else:
+                off = np.where(one_age[line], np.abs(block.values[line] - expected[line]), -1)
+                age = int(off.argmax())
+                label, found, usual = (
+                    block.grid.labels[age],
+                    block.values[line, age],
+                    expected[line, age],
+                )
+            values = {"age": label, "found": float(found), "usual": float(round(usual))}
+            place = ledger.named(int(block.place[line]))
+            yield block.fault(block.row[line, age], place | values)
+
+
+def _infants(ledger: Ledger) -> Iterator[Fault]:
+    deaths = ledger.lines.get("deaths", {})
+    for place, (block, line) in ledger.lines.get("births", {}).items():
+        sexes = [place] if place in deaths else [place - 20_000, place - 10_000]
+        lines = [deaths[at] for at in sexes if at in deaths]
+        if len(lines) != len(sexes) or not all(map(_first_year, lines)):
+            continue
+        infants = sum(float(other.values[at, 0]) for other, at in lines)
+        if infants > block.values[line, 0]:
+            values = {"deaths": infants, "births": float(block.values[line, 0])}
+            other, at = lines[0]
+            yield other.fault(other.row[at, 0], ledger.named(place) | values)
+
+
+def _first_year(line: Line) -> bool:
+    return line[0].grid.has(1)
+
+
+def _fractions(ledger: Ledger) -> Iterator[Fault]:
+    for block in ledger.of("deaths"):
+        broken = block.values != np.round(block.values)
+        if broken.any():
+            yield block.fault(block.row[broken], {"value": float(block.values[broken][0])})
+
+
+def _changing_ages(ledger: Ledger) -> Iterator[Fault]:
+    """Areas and sexes whose deaths come in other age groups in some years."""
+    blocks = ledger.of("deaths")
+    if len(blocks) < 2:
+        return
+    series = np.concatenate([block.place // 10_000 for block in blocks])
+    grids = np.concatenate([np.full(len(b.place), n) for n, b in enumerate(blocks)])
+    first: dict[int, int] = {}
+    for place, grid in sorted(set(zip(series.tolist(), grids.tolist(), strict=True))):
+        if first.setdefault(place, grid) != grid and blocks[first[place]].grid != blocks[grid].grid:
+            block = blocks[grid]
+            line = int(np.flatnonzero(block.place // 10_000 == place)[0])
+            place_values = ledger.named(int(block.place[line]))
+            missing = set(blocks[first[place]].grid.starts) ^ set(block.grid.starts)
+            ages = ", ".join(str(age) for age in sorted(missing)[:12])
+            yield block.fault(block.row[line, 0], place_values | {"ages": ages})
+
+
+CHECKS: tuple[Check[Ledger], ...] = (
+    Check(
+        key="jump_of_deaths",
+        severity="warning",
+        meaning="Deaths differ from the median of the two years before and the two after by more "
+        "than 30 % at all ages together or 50 % in an age group, and by more than chance allows "
+        "(6 and 8 square roots of the expected count).",
+        found="{found} in {area}, {sex} {year}, age {age}",
+        expected="about {usual}, as in the years around it",
+        remedy="Compare with the source. If it is right, say so in the note.",
+        find=lambda ledger: _of_measure(ledger, "deaths"),
+    ),
+    Check(
+        key="jump_of_population",
+        severity="warning",
+        meaning="The population differs from the median of the two years before and the two after "
+        "by more than 20 % at all ages together or 50 % in an age group, and by more than chance "
+        "allows (6 and 8 square roots of the expected count).",
+        found="{found} in {area}, {sex} {year}, age {age}",
+        expected="about {usual}, as in the years around it",
+        remedy="Compare with the source. If it is right, say so in the note.",
+        find=lambda ledger: _of_measure(ledger, "person_years"),
+    ),
+    Check(
+        key="infant_deaths_exceed_births",
+        severity="warning",
+        meaning="More children died in their first year than were born.",
+        found="{deaths} deaths under age 1 in {area}, {sex} {year}",
+        expected="at most {births}, the births of the year",
+        remedy="Compare the births with their source.",
+        find=_infants,
+    ),
+    Check(
+        key="fractional_deaths",
+        severity="warning",
+        meaning="Deaths are not whole numbers. They are taken as they are.",
+        found="{value}",
+        expected="whole numbers of deaths",
+        remedy="Say in the note where the fractions come from (deaths shared out, estimates).",
+        find=_fractions,
+    ),
+    Check(
+        key="age_groups_change",
+        severity="warning",
+        meaning="The deaths of one area and sex come in other age groups in some years. Each year "
+        "is kept as it is.",
+        found="other age groups from {year} in {area}, {sex}; they differ at age {ages}",
+        expected="the same age groups in every year",
+        remedy="Look whether an age is missing; comparisons are made on the common groups.",
+        find=_changing_ages,
+    ),
+)

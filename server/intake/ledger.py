@@ -1,0 +1,163 @@
+"""All vectors of an upload together: what stands beside what."""
+
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+from functools import cached_property
+
+import numpy as np
+
+from engine.ages import AgeGrid, Array
+from server.intake.cells import Ints, parts_of, place_of
+from server.intake.problems import Value
+from server.intake.schedules import Block
+
+Line = tuple[Block, int]  # a block and which of its lines
+
+
+@dataclass(frozen=True, slots=True)
+class AgeTotal:
+    """A row of the file that is a total over the ages."""
+
+    measure: str
+    file: str
+    column: str
+    place: int
+    value: float
+    row: int
+
+
+@dataclass(frozen=True, slots=True)
+class Pair:
+    """Deaths and person-years of the same places, each on its own grid, and the common one."""
+
+    deaths: Block
+    people: Block
+    grid: AgeGrid
+
+
+@dataclass(frozen=True)
+class Ledger:
+    """Vectors, and what was found around them."""
+
+    codes: tuple[str, ...]  # of the areas, in order
+    whole: int  # number of the area of which the others are parts; -1: there is none
+    delivered: frozenset[int]  # numbers of areas kept as delivered
+    blocks: tuple[Block, ...]
+    spoiled: Ints  # places with errors; what is missing there is not missed
+    unplaced: bool  # rows exist whose area, sex or year is not known
+    age_totals: tuple[AgeTotal, ...]
+
+    def of(self, measure: str) -> tuple[Block, ...]:
+        return tuple(block for block in self.blocks if block.measure == measure)
+
+    @cached_property
+    def lines(self) -> dict[str, dict[int, Line]]:
+        """By measure and place."""
+        found: dict[str, dict[int, Line]] = {}
+        for block in self.blocks:
+            places = found.setdefault(block.measure, {})
+            places.update((place, (block, line)) for line, place in enumerate(block.place.tolist()))
+        return found
+
+    def places(self, measure: str) -> Ints:
+        """All places that have the measure, in order."""
+        found = [block.place for block in self.of(measure)]
+        return np.sort(np.concatenate(found)) if found else np.zeros(0, np.int64)
+
+    def named(self, place: int) -> dict[str, Value]:
+        """Area, sex and year of a place, as values of a fault."""
+        area, sex, year = parts_of(place)
+        return {"area": self.codes[area], "sex": sex, "year": str(year)}
+
+    def both_sexes(self, measure: str) -> Ints:
+        """Places of persons where women and men have the measure too."""
+        places = self.places(measure)
+        persons = places[(places // 10_000) % 3 == 2]
+        women, men = persons - 20_000, persons - 10_000
+        return persons[np.isin(women, places) & np.isin(men, places)]
+
+    def parts(self, place: int, measure: str) -> tuple[list[Line], list[str]]:
+        """Lines of the parts at a place of the whole, and codes of the parts that have none."""
+        _, sex, year = parts_of(place)
+        lines = self.lines.get(measure, {})
+        found, missing = [], []
+        for area, code in enumerate(self.codes):
+            if area == self.whole:
+                continue
+            at = int(place_of(area, "fmp".index(sex), year))
+            if at in lines:
+                found.append(lines[at])
+            else:
+                missing.append(code)
+        return found, missing
+
+    def wholes(self, measure: str) -> list[int]:
+        """Places of the whole that have the measure."""
+        return [place for place in self.lines.get(measure, {}) if parts_of(place)[0] == self.whole]
+
+    def without_totals(self) -> "Ledger":
+        """Without what is summed anyway: persons beside both sexes, the whole beside all parts."""
+        kept = []
+        for block in self.blocks:
+            drop = np.isin(block.place, self.both_sexes(block.measure))
+            if self.whole >= 0 and self.whole not in self.delivered:
+                summed = [
+                    place
+                    for place in self.wholes(block.measure)
+                    if not self.parts(place, block.measure)[1]
+                ]
+                drop |= np.isin(block.place, summed)
+            kept.append(block.pick(~drop) if drop.any() else block)
+        return replace(self, blocks=tuple(block for block in kept if len(block.place)))
+
+    @cached_property
+    def pairs(self) -> tuple[Pair, ...]:
+        """Deaths and person-years side by side, a pair for each two blocks that share places."""
+        deaths, people = self.of("deaths"), self.of("person_years")
+        here, there = _where(deaths), _where(people)
+        _, left, right = np.intersect1d(here[:, 0], there[:, 0], return_indices=True)
+        met = np.column_stack([here[left, 1:], there[right, 1:]])
+        found = []
+        for one, other in dict.fromkeys(map(tuple, met[:, [0, 2]].tolist())):
+            both = (met[:, 0] == one) & (met[:, 2] == other)
+            grid = deaths[one].grid.common(people[other].grid)
+            found.append(
+                Pair(deaths[one].pick(met[both, 1]), people[other].pick(met[both, 3]), grid)
+            )
+        return tuple(found)
+
+    def on_common_grids(self) -> Iterator[Block]:
+        """All vectors, deaths and person-years of a place in the same groups."""
+        for pair in self.pairs:
+            yield pair.deaths.regroup(pair.grid)
+            yield pair.people.regroup(pair.grid)
+        paired = [pair.deaths.place for pair in self.pairs] or [np.zeros(0, np.int64)]
+        for block in self.blocks:
+            if block.measure == "births":
+                yield block
+            else:
+                yield block.pick(~np.isin(block.place, np.concatenate(paired)))
+
+
+def _where(blocks: tuple[Block, ...]) -> Ints:
+    """[line, (place, block, line of the block)]"""
+    rows = [
+        np.column_stack(
+            [block.place, np.full(len(block.place), number), np.arange(len(block.place))]
+        )
+        for number, block in enumerate(blocks)
+    ]
+    return np.concatenate(rows) if rows else np.zeros((0, 3), np.int64)
+
+
+def summed(lines: list[Line], grid: AgeGrid) -> Array:
+    """Sum of some lines on a grid all of them can be brought to, [age]."""
+    parts = [block.grid.regroup(block.values[line], grid) for block, line in lines]
+    return np.sum(parts, axis=0)
+
+
+def common_grid(lines: list[Line]) -> AgeGrid:
+    grid = lines[0][0].grid
+    for block, _ in lines[1:]:
+        grid = grid.common(block.grid)
+    return grid

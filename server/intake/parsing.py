@@ -1,0 +1,224 @@
+"""From handed-in bytes to schedules or problems: a pure function of bytes, mapping and reader."""
+
+from collections import defaultdict
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from server.intake.cells import (
+    TOTAL,
+    UNREADABLE,
+    Cells,
+    Flags,
+    Ints,
+    cells,
+    codes_of,
+    names_of,
+    parts_of,
+    whole_code,
+)
+from server.intake.checks import ages, columns, fields, files, plausibility, series, totals
+from server.intake.checks.check import Marks, RowCheck, Subject
+from server.intake.layout import layout
+from server.intake.ledger import AgeTotal, Ledger
+from server.intake.mapping import ROLES, Mapping
+from server.intake.problems import Problem
+from server.intake.schedules import MEASURES, Block, blocks, ordered
+from server.intake.sheets import Sheet, load
+from server.store.records import Area, Key, Vector
+
+READER = "reader-1"  # changes whenever the same bytes and mapping would give other schedules
+
+
+@dataclass(frozen=True, slots=True)
+class Handed:
+    """A file as handed in, and how it is to be read."""
+
+    role: str  # a key of mapping.ROLES
+    name: str
+    content: bytes
+    mapping: Mapping
+
+
+@dataclass(frozen=True, slots=True)
+class Parsed:
+    """What an upload says. With an error among the problems it must not become an edition."""
+
+    cells: dict[Key, Vector]
+    areas: tuple[Area, ...]
+    problems: tuple[Problem, ...]
+    row_count: int  # rows read, headings and blank lines not counted
+    sound_count: int  # rows without an error
+    whole: str  # code of the area that is summed from the others; empty where none is
+
+    @property
+    def errors(self) -> tuple[Problem, ...]:
+        return tuple(problem for problem in self.problems if problem.severity == "error")
+
+
+@dataclass(frozen=True, slots=True)
+class _Sorted:
+    """One file as far as it could be read."""
+
+    problems: list[Problem]
+    rows: int
+    sound: int
+    blocks: list[Block]
+    spoiled: Ints  # places with errors
+    unplaced: bool
+    age_totals: list[AgeTotal]
+
+
+def parse(handed: Sequence[Handed]) -> Parsed:
+    """Read the files of one upload. Never raises on bad content: it collects all problems.
+
+    Raises: ValueError where a role is unknown or comes twice.
+    """
+    roles = [file.role for file in handed]
+    if len(set(roles)) != len(roles) or not set(roles) <= set(ROLES):
+        raise ValueError(f"an upload has one file of each role of {', '.join(ROLES)}; got {roles}")
+    problems: list[Problem] = []
+    sheets: list[Sheet] = []
+    unread = 0
+    for file in sorted(handed, key=lambda file: list(ROLES).index(file.role)):
+        laid = layout(file.content, file.name)
+        found = files.problems_of(laid)
+        found += [] if found else columns.problems_of(columns.Mapped(laid, file.role, file.mapping))
+        if found:
+            problems += found
+            unread += laid.row_count
+        else:
+            sheets.append(load(laid, file.mapping, file.role))
+    codes, areas, clashes = _areas(sheets, handed)
+    problems += clashes
+    done = [_sorted(cells(sheet, codes)) for sheet in sheets]
+    problems += [problem for part in done for problem in part.problems]
+    ledger = _ledger(done, codes, areas, missing_files=bool(unread) or len(sheets) < len(handed))
+    for check in (*series.CHECKS, *totals.CHECKS, *plausibility.CHECKS):
+        problems += check.problems(ledger)
+    return Parsed(
+        cells=_vectors(ledger.without_totals()),
+        areas=areas,
+        problems=tuple(problems),
+        row_count=unread + sum(part.rows for part in done),
+        sound_count=sum(part.sound for part in done),
+        whole=_whole(handed),
+    )
+
+
+def _whole(handed: Iterable[Handed]) -> str:
+    return next((code for file in handed if (code := whole_code(file.mapping))), "")
+
+
+def _areas(
+    sheets: Sequence[Sheet], handed: Sequence[Handed]
+) -> tuple[tuple[str, ...], tuple[Area, ...], list[Problem]]:
+    """Codes in order, the areas, and names or wholes that disagree."""
+    names: dict[str, list[str]] = defaultdict(list)
+    found: set[str] = set()
+    for sheet in sheets:
+        codes = codes_of(sheet)
+        found |= set(codes) - {""}
+        for code, given in names_of(sheet, codes).items():
+            names[code] += [name for name in given if name not in names[code]]
+    whole = _whole(handed)
+    found |= {whole} - {""}
+    delivered = {code for file in handed for code in file.mapping.delivered}
+    named = next((file.mapping.whole_name for file in handed if file.mapping.whole_name), "")
+    areas = tuple(
+        Area(
+            code=code,
+            name=(named if code == whole else "") or next(iter(names[code]), code),
+            parent="" if code == whole else whole,
+            delivered=code in delivered,
+        )
+        for code in sorted(found)
+    )
+    said = columns.Said(
+        names={code: tuple(given) for code, given in names.items()},
+        wholes=tuple(dict.fromkeys(filter(None, (whole_code(f.mapping) for f in handed)))),
+        codes=tuple(sorted(found)),
+        delivered=tuple(sorted(delivered)),
+    )
+    problems = [problem for check in columns.AREA_CHECKS for problem in check.problems(said)]
+    return tuple(sorted(found)), areas, problems if sheets else []
+
+
+def _sorted(read: Cells) -> _Sorted:
+    """Check a sheet row by row and age by age, and cut what is sound into vectors."""
+    sheet = read.sheet
+    problems: list[Problem] = []
+    labelled = np.ones(len(sheet), bool)  # every label of the row could be read
+    sound = labelled.copy()
+    for check, marks in _marks(fields.CHECKS, read):
+        problems += check.problems(marks, sheet.row, sheet.name)
+        sound &= ~marks.failing
+        if check.key not in fields.OF_NUMBERS:
+            labelled &= ~marks.failing
+    rows = ordered(read, labelled)
+    failing = np.zeros(len(rows.take), bool)
+    for check, marks in _marks(ages.CHECKS, rows):
+        problems += check.problems(marks, rows.row, sheet.name)
+        failing |= marks.failing
+    sound[rows.take[failing]] = False
+    wrong = read.placed & ~sound
+    spoiled = np.unique(read.place[wrong])
+    return _Sorted(
+        problems=problems,
+        rows=len(sheet),
+        sound=int(sound.sum()),
+        blocks=list(blocks(rows, spoiled)),
+        spoiled=spoiled,
+        unplaced=not read.placed.all(),
+        age_totals=_age_totals(read, read.placed & sound & (read.start == TOTAL)),
+    )
+
+
+def _marks(
+    checks: Sequence[RowCheck[Subject]], subject: Subject
+) -> Iterable[tuple[RowCheck[Subject], Marks]]:
+    return ((check, marks) for check in checks for marks in check.mark(subject))
+
+
+def _age_totals(read: Cells, rows: Flags) -> list[AgeTotal]:
+    sheet = read.sheet
+    return [
+        AgeTotal(
+            measure=MEASURES[field],
+            file=sheet.name,
+            column=sheet.mapping.column(field),
+            place=int(read.place[row]),
+            value=float(numbers.values[row]),
+            row=int(sheet.row[row]),
+        )
+        for field, numbers in sheet.numbers.items()
+        for row in np.flatnonzero(rows)
+    ]
+
+
+def _ledger(
+    done: Sequence[_Sorted], codes: tuple[str, ...], areas: Sequence[Area], *, missing_files: bool
+) -> Ledger:
+    whole = {area.parent for area in areas} - {""}
+    return Ledger(
+        codes=codes,
+        whole=codes.index(whole.pop()) if whole else UNREADABLE,
+        delivered=frozenset(place for place, area in enumerate(areas) if area.delivered),
+        blocks=tuple(block for part in done for block in part.blocks),
+        spoiled=np.unique(np.concatenate([np.zeros(0, np.int64), *(p.spoiled for p in done)])),
+        unplaced=missing_files or any(part.unplaced for part in done),
+        age_totals=tuple(total for part in done for total in part.age_totals),
+    )
+
+
+def _vectors(ledger: Ledger) -> dict[Key, Vector]:
+    """The schedules as the store keeps them, in the order of their keys within each measure."""
+    found = {}
+    for block in ledger.on_common_grids():
+        statuses = ["provisional" if mark else "final" for mark in block.provisional.tolist()]
+        for place, status, values in zip(block.place.tolist(), statuses, block.values, strict=True):
+            area, sex, year = parts_of(place)
+            key = Key(ledger.codes[area], sex, str(year), block.measure)
+            found[key] = Vector(status, block.grid, values)
+    return found

@@ -1,0 +1,70 @@
+"""What the checks of an upload found, as it is kept beside the upload."""
+
+import json
+from dataclasses import dataclass
+
+from server.intake.parsing import Parsed
+from server.intake.problems import Problem
+
+
+@dataclass(frozen=True, slots=True)
+class Report:
+    """Problems, and what the upload would become."""
+
+    problems: tuple[Problem, ...]
+    rows: int  # read; headings and blank lines not counted
+    sound: int  # of them without an error
+    areas: tuple[str, ...]  # codes
+    sexes: tuple[str, ...]
+    periods: tuple[str, ...]
+    measures: tuple[str, ...]
+    provisional: tuple[str, ...]  # periods that are provisional somewhere
+    grids: tuple[tuple[str, ...], ...]  # labels of the age groups, for each grid of deaths
+    whole: str  # code of the area that is summed from the others; empty where none is
+    persons: bool  # persons are summed from women and men
+    delivered: tuple[str, ...]  # codes of areas kept as delivered
+
+    @classmethod
+    def of(cls, parsed: Parsed) -> "Report":
+        keys = parsed.cells.keys()
+        sexes = {(key.area, key.period, key.measure, key.sex) for key in keys}
+        delivered = tuple(area.code for area in parsed.areas if area.delivered)
+        grids = dict.fromkeys(
+            cell.grid for key, cell in parsed.cells.items() if key.measure == "deaths"
+        )
+        provisional = {k.period for k, cell in parsed.cells.items() if cell.status != "final"}
+        return cls(
+            problems=parsed.problems,
+            rows=parsed.row_count,
+            sound=parsed.sound_count,
+            areas=tuple(area.code for area in parsed.areas),
+            sexes=tuple(sorted({key.sex for key in keys})),
+            periods=tuple(sorted({key.period for key in keys})),
+            measures=tuple(sorted({key.measure for key in keys})),
+            provisional=tuple(sorted(provisional)),
+            grids=tuple(grid.labels for grid in grids),
+            whole=parsed.whole if parsed.whole not in delivered else "",
+            persons=any(sex == "f" and (*place, "m") in sexes for *place, sex in sexes),
+            delivered=delivered,
+        )
+
+    @property
+    def errors(self) -> tuple[Problem, ...]:
+        return tuple(problem for problem in self.problems if problem.severity == "error")
+
+    @property
+    def warnings(self) -> tuple[Problem, ...]:
+        return tuple(problem for problem in self.problems if problem.severity == "warning")
+
+    def to_json(self) -> str:
+        stored = {name: getattr(self, name) for name in self.__slots__}
+        stored["problems"] = [problem.to_json() for problem in self.problems]
+        return json.dumps(stored, sort_keys=True, ensure_ascii=False)
+
+    @classmethod
+    def from_json(cls, text: str) -> "Report":
+        stored = json.loads(text)
+        lists = {name: tuple(value) for name, value in stored.items() if isinstance(value, list)}
+        lists["problems"] = tuple(Problem.from_json(problem) for problem in stored["problems"])
+        lists["grids"] = tuple(tuple(labels) for labels in stored["grids"])
+        return cls(**(stored | lists))
