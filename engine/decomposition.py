@@ -6,18 +6,18 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-from engine.ages import Array
+from engine.ages import AgeGrid, Array
 from engine.chain import Chain, Reading, gradient, run
 from engine.panel import Panel
 from engine.settings import Settings
 from engine.stages.separation import CHILD, FIRST_YEAR, has_child_group, has_first_year
 from engine.streams import poisson_draws
 from engine.tables import LifeTable
+from engine.uncertainty import quantiles
 
 NODES, WEIGHTS = np.polynomial.legendre.leggauss(8)
 BESIDE = 1e-13  # relative distance at which the two sides of a jump are read
 DOUBLINGS = 8  # cuts as the open group's rate doubles: 1 / m bends too sharply for eight nodes
-LEAST_DRAWS = 0.9  # share of draws that must give a figure for limits to be stated
 
 
 @dataclass(frozen=True, slots=True)
@@ -83,26 +83,25 @@ def contribution_limits(
     *,
     streams: NDArray[np.str_],
     draws: int = 200,
+    groups: AgeGrid | None = None,
 ) -> Limits:
     """Limits within which chance in deaths leaves each age's contribution, by keyed simulation.
 
     Deaths of both populations are drawn anew, person-years and the infants' mix held; the limits
-    are quantiles over the draws at the settings' level.
+    are quantiles over the draws at the settings' level. With `groups`, a coarser grid, they are
+    limits of the sums over its groups.
 
-    Shape:   panels [..., age], streams [...] -> low, high [..., age].
-    Missing: nan where more than a tenth of the draws give no figure.
+    Shape:   panels [..., age], streams [...] -> low, high [..., age], or [..., group].
+    Missing: nan where more than 1 % of the draws give no figure.
     Raises:  as `contributions` and `poisson_draws`.
     """
     this, that = (
         replace(panel, deaths=poisson_draws(panel.deaths, streams, draws, f"contributions, {side}"))
         for side, panel in (("this", this), ("that", that))
     )
-    by_age = np.sort(contributions(indicator, this, that, settings).by_age, axis=0)  # nan last
-    known = np.isfinite(by_age).sum(axis=0)
-    tail = (1 - settings.level) / 2
-    low, high = (_quantile(by_age, known, share) for share in (tail, 1 - tail))
-    enough = known >= LEAST_DRAWS * draws
-    return Limits(np.where(enough, low, np.nan), np.where(enough, high, np.nan))
+    by_age = contributions(indicator, this, that, settings).by_age
+    limits = quantiles(by_age.reshape(draws, -1), settings.level).reshape(2, *by_age.shape[1:])
+    return Limits(limits[0], limits[1])
 
 
 def arriaga(this: LifeTable, that: LifeTable) -> Array:
@@ -225,12 +224,3 @@ def _gauss(edges: Array) -> tuple[Array, Array]:
     weights = width * (WEIGHTS / 2).reshape(spread)
     shape = (-1, *edges.shape[1:])
     return nodes.reshape(shape), weights.reshape(shape)
-
-
-def _quantile(ordered: Array, known: NDArray[np.intp], share: float) -> Array:
-    """Quantile along the first axis of which only the first `known` values, ascending, count."""
-    place = share * np.maximum(known - 1, 0)
-    low = np.floor(place).astype(int)
-    high = np.minimum(low + 1, np.maximum(known - 1, 0))
-    below, above = (np.take_along_axis(ordered, at[None], axis=0)[0] for at in (low, high))
-    return np.asarray(below + (place - low) * (above - below))

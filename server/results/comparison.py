@@ -3,6 +3,7 @@
 from dataclasses import dataclass, replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from engine import decomposition, indicators
 from engine import settings as named
@@ -35,9 +36,10 @@ class Side:
 
 @dataclass(frozen=True, slots=True)
 class Contribution:
-    """What each age adds to a difference, [age]; the remainder belongs to no age."""
+    """What each age adds to a difference; the remainder belongs to no age."""
 
-    by_age: Array
+    by_age: Array  # [age]
+    by_group: Array  # [group], the same summed, with the limits of the sums
     low: Array
     high: Array
     remainder: float
@@ -53,6 +55,7 @@ class Comparison:
     question: ComparisonQuestion
     settings: Settings
     grid: AgeGrid  # the finest both can be summed to
+    groups: AgeGrid  # the same in groups of at least five years after the first, for pictures
     this: Side
     that: Side
     overlap: PopulationYear | None  # deaths counted in both
@@ -95,6 +98,7 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
         shared=shared,
     )
     codes = pair_stream(collection.code, question.this, question.that)
+    groups = _groups(this.panel.grid)
     if question.this == question.that:
         difference = {key: _no_sampling(estimate) for key, estimate in difference.items()}
     return Comparison(
@@ -103,12 +107,13 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
         question=question,
         settings=settings,
         grid=this.panel.grid,
+        groups=groups,
         this=this,
         that=that,
         overlap=both,
         difference=difference,
         contributions={
-            key: _contribution(key, this, that, settings, codes)
+            key: _contribution(key, this, that, settings, codes, groups)
             for key in DECOMPOSED
             if np.isfinite(difference[key].value)
         },
@@ -158,15 +163,31 @@ def _sides(
     return sides[0], sides[1]
 
 
+def _groups(grid: AgeGrid) -> AgeGrid:
+    return AgeGrid(tuple(start for start in grid.starts if start % 5 == 0 or start == 1))
+
+
 def _contribution(
-    key: str, this: Side, that: Side, settings: Settings, codes: np.ndarray
+    key: str,
+    this: Side,
+    that: Side,
+    settings: Settings,
+    codes: NDArray[np.str_],
+    groups: AgeGrid,
 ) -> Contribution:
     indicator = indicators.find(key)
     parts = decomposition.contributions(indicator, this.panel, that.panel, settings)
     low, high = decomposition.contribution_limits(
-        indicator, this.panel, that.panel, settings, streams=codes
+        indicator, this.panel, that.panel, settings, streams=codes, groups=groups
     )
-    return Contribution(parts.by_age, low, high, float(parts.remainder), float(parts.difference))
+    return Contribution(
+        parts.by_age,
+        this.panel.grid.regroup(parts.by_age, groups),
+        low,
+        high,
+        float(parts.remainder),
+        float(parts.difference),
+    )
 
 
 def _no_sampling(estimate: Estimate) -> Estimate:
