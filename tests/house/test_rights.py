@@ -3,9 +3,9 @@
 import pytest
 from fastapi.dependencies.models import Dependant
 from fastapi.routing import APIRoute
-from server.app import create_app
 
 from server.accounts.viewer import Right
+from server.app import create_app
 from server.config import Config
 from server.routes.asking import Need
 
