@@ -109,7 +109,7 @@ def pull(table: LifeTable, partials: Partials) -> Gradient:
     """The gradient in mx and ax of a number whose derivatives by column are given.
 
     Shape:   partials and result [..., age] on the table's grid.
-    Missing: a column that the number does not read (None) passes no nan on.
+    Missing: an age or column that the number does not read (0 or None) passes no nan on.
     """
     with np.errstate(all="ignore"):
         return _pull(table, partials)
@@ -129,26 +129,31 @@ def _pull(table: LifeTable, partials: Partials) -> Gradient:
     if partials.ex is not None:  # e_x = a_x q_x + p_x (n + e_{x+n})
         reach = zero + partials.ex
         for x in range(last):
-            ga[..., x] += reach[..., x] * q[..., x]
-            gq[..., x] += reach[..., x] * (a[..., x] - n[x] - table.ex[..., x + 1])
-            reach[..., x + 1] += reach[..., x] * p[..., x]
+            ga[..., x] += _through(reach[..., x], q[..., x])
+            gq[..., x] += _through(reach[..., x], a[..., x] - n[x] - table.ex[..., x + 1])
+            reach[..., x + 1] += _through(reach[..., x], p[..., x])
         ga[..., -1] += reach[..., -1]
     if partials.Lx is not None:  # L_x = n l_{x+n} + a_x d_x, and l a in the open group
         gl[..., 1:] += n * partials.Lx[..., :-1]
-        gd[..., :-1] += a * partials.Lx[..., :-1]
-        ga[..., :-1] += table.dx[..., :-1] * partials.Lx[..., :-1]
-        gl[..., -1] += table.ax[..., -1] * partials.Lx[..., -1]
-        ga[..., -1] += table.lx[..., -1] * partials.Lx[..., -1]
-    gl[..., :-1] += q * gd[..., :-1]  # d_x = l_x q_x, and l in the open group
+        gd[..., :-1] += _through(partials.Lx[..., :-1], a)
+        ga[..., :-1] += _through(partials.Lx[..., :-1], table.dx[..., :-1])
+        gl[..., -1] += _through(partials.Lx[..., -1], table.ax[..., -1])
+        ga[..., -1] += _through(partials.Lx[..., -1], table.lx[..., -1])
+    gl[..., :-1] += _through(gd[..., :-1], q)  # d_x = l_x q_x, and l in the open group
     gl[..., -1] += gd[..., -1]
-    gq += table.lx[..., :-1] * gd[..., :-1]
+    gq += _through(gd[..., :-1], table.lx[..., :-1])
     for x in reversed(range(last)):  # l_{x+n} = l_x p_x, without dividing by a p_x that may be 0
-        gq[..., x] -= table.lx[..., x] * gl[..., x + 1]
-        gl[..., x] += p[..., x] * gl[..., x + 1]
-    per_q = gq * n / (1 + (n - a) * m) ** 2
+        gq[..., x] -= _through(gl[..., x + 1], table.lx[..., x])
+        gl[..., x] += _through(gl[..., x + 1], p[..., x])
+    per_q = _through(gq, n / (1 + (n - a) * m) ** 2)
     gm[..., :-1] += per_q
-    ga[..., :-1] += per_q * m * m
+    ga[..., :-1] += _through(per_q, m * m)
     return Gradient(gm, ga)
+
+
+def _through(g: Array, slope: Array) -> Array:
+    """g * slope; what does not move the number takes no nan from a column that has one."""
+    return np.where(g == 0, 0.0, g * slope)
 
 
 def _given(partials: Partials) -> list[Array]:

@@ -49,7 +49,7 @@ def estimate(
     if indicator.smooth:
         with np.errstate(all="ignore"):
             variance = (gradient(indicator, chain) ** 2 * chain.rates.variance).sum(axis=-1)
-        return _normal(value, variance, reason, settings, nothing=Reason.NO_DEATHS)
+        return _normal(indicator, value, variance, reason, settings, nothing=Reason.NO_DEATHS)
     if streams is None:
         return _without(value, reason, Reason.NOT_SIMULATED)
 
@@ -101,7 +101,7 @@ def difference(
             variance = apart - 2 * (g * h * _covariance(both, this, that)).sum(axis=-1)
         variance = np.where(variance > SAME * apart, variance, 0.0)
         nothing = np.where(apart > 0, Reason.NO_SAMPLING_INTERVAL, Reason.NO_DEATHS)
-        return _normal(value, variance, reason, settings, nothing=nothing)
+        return _normal(indicator, value, variance, reason, settings, nothing=nothing)
     if streams is None:
         return _without(value, reason, Reason.NOT_SIMULATED)
     sides = _flat(this), _flat(that)
@@ -137,6 +137,7 @@ def _covariance(shared: Array, this: Panel, that: Panel) -> Array:
 
 
 def _normal(
+    indicator: Indicator,
     value: Array,
     variance: Array,
     reason: NDArray[np.uint8],
@@ -145,9 +146,9 @@ def _normal(
     nothing: Reason | NDArray[np.int_],
 ) -> Estimate:
     half = ndtri((1 + settings.level) / 2) * np.sqrt(variance)
-    bare = (reason == Reason.NONE) & ~(half > 0)
+    why = np.where(np.isnan(half), indicator.needs.otherwise, nothing)
+    reason = np.where((reason == Reason.NONE) & ~(half > 0), why, reason).astype(np.uint8)
     half = np.where(half > 0, half, np.nan)
-    reason = np.where(bare, nothing, reason).astype(np.uint8)
     return Estimate(value, value - half, value + half, reason)
 
 
@@ -193,14 +194,14 @@ def _simulated(
     limits = np.full((2, rows), np.nan)
     for first in range(0, rows, step):
         where = slice(first, min(first + step, rows))
-        limits[:, where] = _quantiles(draw(where), settings.level)
+        limits[:, where] = quantiles(draw(where), settings.level)
     limits = np.where(reason == Reason.NONE, limits.reshape(2, *value.shape), np.nan)
     bare = (reason == Reason.NONE) & np.isnan(limits[0])
     reason = np.where(bare, indicator.needs.otherwise, reason).astype(np.uint8)
     return Estimate(value, limits[0], limits[1], reason)
 
 
-def _quantiles(values: Array, level: float) -> Array:
+def quantiles(values: Array, level: float) -> Array:
     """Lower and upper limit of draws [draw, row]: [2, row]; nan where too many draws are nan."""
     ordered = np.sort(values, axis=0)  # nan last
     known = np.sum(~np.isnan(values), axis=0)

@@ -44,7 +44,7 @@ def by_law(grid: AgeGrid, rates: Rates, settings: Settings) -> Closed:
     if closed - first < LEAST_AGES:
         missing = np.full((*rates.mx.shape[:-1], len(ages)), np.nan)
         mx = np.concatenate([rates.mx[..., :closed], missing], axis=-1)
-        return Closed(AgeGrid(starts), mx, closed, lambda g: np.full_like(rates.mx, np.nan))
+        return Closed(AgeGrid(starts), mx, closed, lambda g: _below(g, closed, np.nan))
     inside = slice(first, closed)
     exposure = np.ascontiguousarray(rates.exposure[..., inside])
     fitted = fit(law, grid.mids[inside], rates.mx[..., inside] * exposure, exposure)
@@ -52,15 +52,22 @@ def by_law(grid: AgeGrid, rates: Rates, settings: Settings) -> Closed:
         rising = np.real(fitted.slope)[..., None] > 0
         above = np.where(rising, fitted.hazard(ages), np.nan)
     mx = np.concatenate([rates.mx[..., :closed], above], axis=-1)
-    return Closed(AgeGrid(starts), mx, closed, lambda g: _pull(g, fitted, ages, inside, rates.mx))
+    return Closed(AgeGrid(starts), mx, closed, lambda g: _pull(g, fitted, ages, inside, closed))
 
 
-def _pull(g: Array, fitted: Fit, ages: Array, inside: slice, mx: Array) -> Array:
-    closed = mx.shape[-1] - 1
-    out = np.concatenate([g[..., :closed], np.zeros_like(g[..., :1])], axis=-1)
+def _pull(g: Array, fitted: Fit, ages: Array, inside: slice, closed: int) -> Array:
     with np.errstate(all="ignore"):
-        out[..., inside] += fitted.pull(ages, g[..., closed:])
-    return out
+        by_law = fitted.pull(ages, g[..., closed:])
+    through = np.zeros((*by_law.shape[:-1], closed + 1), by_law.dtype)
+    through[..., inside] = by_law
+    return _below(g, closed, through)
+
+
+def _below(g: Array, closed: int, through: Array | float) -> Array:
+    """The gradient at the closed groups, and what comes through the law if it is read at all."""
+    out = np.concatenate([g[..., :closed], np.zeros_like(g[..., :1])], axis=-1)
+    read = (g[..., closed:] != 0).any(axis=-1, keepdims=True)
+    return out + np.where(read, through, 0.0)
 
 
 OPEN_INTERVALS: dict[str, Callable[[AgeGrid, Rates, Settings], Closed]] = {

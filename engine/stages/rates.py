@@ -39,7 +39,7 @@ def death_rates(deaths: Array, exposure: Array) -> Rates:
     array([0.003, 0.025, 0.025])
     """
     empty = exposure == 0
-    pooled = np.array(deaths)
+    pooled = np.array(deaths, dtype=np.result_type(deaths, float))
     with np.errstate(divide="ignore", invalid="ignore"):
         for x in reversed(range(1, pooled.shape[-1])):
             pooled[..., x - 1] += np.where(empty[..., x], pooled[..., x], 0.0)

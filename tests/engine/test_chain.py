@@ -124,6 +124,20 @@ def test_a_law_needs_three_closed_groups_and_rates_that_rise() -> None:
 
 
 @pytest.mark.fast
+@ALL_SETTINGS
+def test_what_an_indicator_does_not_read_passes_no_nan_on(settings: Settings) -> None:
+    """45q15 keeps its gradient where the oldest rates are missing and no law can be fitted."""
+    whole, short = gompertz_panel(seed=8), gompertz_panel(AgeGrid((0, 1, *range(5, 85, 5))), seed=8)
+    gap = gompertz_panel(seed=8)
+    gap.deaths[-4:] = np.nan
+    expected = gradient(indicator("45q15"), run(whole, settings))
+    assert np.count_nonzero(expected) == 9
+    np.testing.assert_array_equal(gradient(indicator("45q15"), run(gap, settings)), expected)
+    found = gradient(indicator("45q15"), run(short, settings))
+    np.testing.assert_array_equal(found > 0, expected[: len(short.grid)] > 0)
+
+
+@pytest.mark.fast
 def test_what_reaches_the_open_age() -> None:
     panel = gompertz_panel(AgeGrid((0, 1, *range(5, 90, 5))), seed=9, people=5e6)
     plain, law = run(panel, find("almanac-1")), run(panel, find("almanac-1-gompertz"))
