@@ -1,0 +1,127 @@
+"""The explained difference between two population-years."""
+
+from collections.abc import Callable
+from contextlib import AbstractContextManager
+
+import numpy as np
+import pytest
+from numpy.testing import assert_allclose, assert_array_equal
+
+from engine.ages import AgeGrid
+from engine.estimates import Reason
+from server.results.comparison import Comparison, comparison
+from server.results.loading import NotInEdition
+from server.results.questions import ComparisonQuestion, PopulationYear
+from server.store.connect import Session
+from server.store.heading import heading
+from tests.factories import GRIDS, edition, gompertz_panel
+
+FIVE = GRIDS["abridged"]
+SHORT = AgeGrid(FIVE.starts[: FIVE.position(85) + 1])
+
+
+def asked(session: Session, this: str, that: str, *, number: int = 1, of: str = "e0") -> Comparison:
+    question = ComparisonQuestion(PopulationYear.parse(this), PopulationYear.parse(that), of)
+    return comparison(session, heading(session, "isle", number), question)
+
+
+@pytest.fixture
+def isle(session: Session) -> Session:
+    panels = {}
+    for seed, year in enumerate(("2004", "2014")):
+        for sex in "fm":
+            level = 3e-5 if year == "2004" else 2.4e-5
+            panels[f"north.{sex}.{year}"] = gompertz_panel(
+                sex=sex, people=3e6, seed=seed, level=level
+            )
+            panels[f"south.{sex}.{year}"] = gompertz_panel(
+                sex=sex, people=3e6, seed=seed + 9, level=level
+            )
+    panels["cape.f.2014"] = gompertz_panel(seed=3, people=30_000).regroup(SHORT)
+    edition(session, panels, parents={"north": "isle", "south": "isle"})
+    return session
+
+
+def test_contributions_add_up_to_the_difference(isle: Session) -> None:
+    found = asked(isle, "north.f.2014", "north.f.2004")
+    for key in ("e0", "H"):
+        part, difference = found.contributions[key], found.difference[key]
+        assert_allclose(part.by_age.sum() + part.remainder, difference.value, rtol=1e-12)
+        assert_allclose(part.difference, difference.value, rtol=1e-12)
+        assert abs(part.remainder) < 1e-9
+        assert np.all(part.low <= part.high)
+    assert_allclose(found.arriaga.sum(), found.difference["e0"].value, rtol=1e-10)
+    assert (found.grid, found.regrouped, found.overlap) == (FIVE, (), None)
+
+
+def test_exchanging_the_two_turns_the_sign(isle: Session) -> None:
+    there, back = (
+        asked(isle, *pair)
+        for pair in (("north.f.2014", "north.m.2004"), ("north.m.2004", "north.f.2014"))
+    )
+    for key in ("e0", "H", "edagger"):
+        assert_allclose(there.difference[key].value, -back.difference[key].value)
+        assert_allclose(there.difference[key].low, -back.difference[key].high)
+
+
+def test_two_open_ages_are_brought_to_one_and_named(isle: Session) -> None:
+    found = asked(isle, "cape.f.2014", "north.f.2014")
+    assert found.grid == SHORT
+    assert [one.code for one in found.regrouped] == ["north.f.2014"]
+    assert set(found.contributions) == {"e0"}
+    assert found.difference["H"].reason == Reason.OPEN_GROUP_TOO_LARGE
+
+
+def test_deaths_counted_in_both_are_counted_once(isle: Session) -> None:
+    part = asked(isle, "north.f.2014", "isle.f.2014")
+    rest = asked(isle, "north.f.2014", "south.f.2014")
+    assert part.overlap == PopulationYear("north", "f", "2014")
+    width = part.difference["e0"].high - part.difference["e0"].low
+    apart = sum(
+        ((side.estimates["e0"].high - side.estimates["e0"].low) / 2) ** 2
+        for side in (part.this, part.that)
+    )
+    # the whole is about half north: the difference is about half of that between the two parts
+    assert width / 2 < 0.85 * np.sqrt(apart)
+    half = (rest.difference["e0"].high - rest.difference["e0"].low) / 2
+    assert_allclose(width, half, rtol=0.1)
+
+
+def test_the_same_on_both_sides_differs_by_nothing_and_chance_has_no_part(isle: Session) -> None:
+    found = asked(isle, "north.f.2014", "north.f.2014")
+    assert found.same
+    for key, difference in found.difference.items():
+        assert difference.value == 0, key
+        assert difference.reason == Reason.NO_SAMPLING_INTERVAL, key
+        assert np.isnan(difference.low), key
+    assert_array_equal(found.contributions["e0"].by_age, 0)
+
+
+def test_an_indicator_asked_for_joins_the_usual_ones(isle: Session) -> None:
+    assert "e80" in asked(isle, "north.f.2014", "north.f.2004", of="e80").difference
+
+
+def test_a_newer_edition_moves_the_headline_by_what_it_says(isle: Session) -> None:
+    assert asked(isle, "north.f.2014", "north.f.2004").moved is None
+    edition(isle, {"north.f.2014": gompertz_panel(people=3e6, seed=1, level=2.5e-5)})
+    before = asked(isle, "north.f.2014", "north.f.2004")
+    after = asked(isle, "north.f.2014", "north.f.2004", number=2)
+    assert before.moved is not None
+    assert before.moved.number == 2
+    assert_allclose(before.moved.value, after.difference["e0"].value, rtol=1e-13)
+    assert before.moved.value < before.difference["e0"].value
+    assert after.moved is None
+
+
+def test_what_the_edition_lacks_is_refused(isle: Session) -> None:
+    with pytest.raises(NotInEdition, match=r"does not hold north\.f\.1950"):
+        asked(isle, "north.f.2014", "north.f.1950")
+
+
+def test_eight_statements_at_most(
+    isle: Session, count_statements: Callable[[], AbstractContextManager[list[str]]]
+) -> None:
+    edition(isle, {"north.f.2014": gompertz_panel(people=3e6, seed=1, level=2.5e-5)})
+    with count_statements() as statements:
+        asked(isle, "north.f.2014", "isle.p.2014")
+    assert len(statements) <= 8

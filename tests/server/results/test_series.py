@@ -1,0 +1,112 @@
+"""The numbers of a trend."""
+
+from collections.abc import Callable
+from contextlib import AbstractContextManager
+
+import numpy as np
+import pytest
+from numpy.testing import assert_allclose
+
+from engine import indicators
+from engine.ages import AgeGrid
+from engine.estimates import Reason
+from engine.settings import find
+from server.results import series as module
+from server.results.loading import NotInEdition
+from server.results.questions import TrendQuestion
+from server.results.series import Series, TooLarge, series
+from server.store.connect import Session
+from server.store.heading import heading
+from tests.factories import GRIDS, edition, gompertz_panel
+
+FIVE = GRIDS["abridged"]
+SHORT = AgeGrid(FIVE.starts[: FIVE.position(85) + 1])
+YEARS = tuple(str(year) for year in range(2001, 2006))
+
+
+@pytest.fixture
+def isle(session: Session) -> Session:
+    """North through five years, a year missing for men; the cape ends at 85+ from 2004 on."""
+    panels = {}
+    for seed, year in enumerate(YEARS):
+        for sex in "fm":
+            panel = gompertz_panel(sex=sex, people=3e6, seed=seed, level=3e-5 - 2e-6 * seed)
+            panels[f"north.{sex}.{year}"] = panel
+            panels[f"cape.{sex}.{year}"] = panel.regroup(SHORT) if year >= "2004" else panel
+    del panels["north.m.2003"]
+    edition(session, panels, provisional=("2005",))
+    return session
+
+
+def asked(session: Session, **choices: object) -> Series:
+    given = {"areas": ("north",), "sexes": ("f",), "first": "2001", "last": "2005"} | choices
+    return series(session, heading(session, "isle", 1), TrendQuestion(**given))  # type: ignore[arg-type]
+
+
+def test_each_cell_is_the_estimate_of_its_population_year(isle: Session) -> None:
+    found = asked(isle, areas=("cape", "north"), sexes=("f", "m"))
+    assert found.lines == (("cape", "f"), ("cape", "m"), ("north", "f"), ("north", "m"))
+    assert found.periods == YEARS
+    assert found.estimate.value.shape == (4, 5)
+    panel = gompertz_panel(people=3e6, seed=1, level=3e-5 - 2e-6)
+    alone = indicators.estimate(indicators.find("e0"), panel, find("almanac-1"))
+    assert_allclose(found.estimate.value[2, 1], alone.value, rtol=1e-10)  # counts are kept to 1e-6
+    assert_allclose(found.estimate.low[2, 1], alone.low, rtol=1e-10)
+
+
+def test_gaps_status_and_open_ages(isle: Session) -> None:
+    found = asked(isle, areas=("cape", "north"), sexes=("m",))
+    assert found.estimate.reason[1].tolist() == [0, 0, Reason.NOT_AVAILABLE, 0, 0]
+    assert np.isnan(found.estimate.value[1, 2])
+    assert found.status[1] == ("final", "final", "", "final", "provisional")
+    assert found.open_ages == ((100, 100, 100, 85, 85), (100, 100, None, 100, 100))
+
+
+def test_the_change_is_the_last_year_known_less_the_first(isle: Session) -> None:
+    found = asked(isle, areas=("cape", "north"))
+    assert found.ends == (("2001", "2005"), ("2001", "2005"))
+    assert_allclose(
+        found.change.value[1], found.estimate.value[1, -1] - found.estimate.value[1, 0], rtol=1e-12
+    )
+    assert found.change.low[1] < found.change.value[1] < found.change.high[1]
+    # the cape's two ends are compared on the ages both have
+    assert abs(found.change.value[0] - found.change.value[1]) < 0.5
+    one = asked(isle, last="2001")
+    assert one.ends == (None,)
+    assert np.isnan(one.change.value[0])
+
+
+def test_a_simulated_indicator_does_not_depend_on_what_else_is_asked(isle: Session) -> None:
+    alone = asked(isle, of="mode", first="2002", last="2002")
+    among = asked(isle, of="mode", areas=("cape", "north"), sexes=("f", "m"))
+    assert alone.estimate.low[0, 0] == among.estimate.low[2, 1]
+
+
+def test_what_the_edition_lacks_is_refused(isle: Session) -> None:
+    with pytest.raises(NotInEdition, match="no area east"):
+        asked(isle, areas=("east",))
+    with pytest.raises(NotInEdition, match=r"holds nothing.*1900 to 1910.*2001 to 2005"):
+        asked(isle, first="1900", last="1910")
+
+
+def test_a_question_above_the_cap_is_refused_with_the_cap(
+    isle: Session, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(module, "MOST", 9)
+    monkeypatch.setattr(module, "MOST_SIMULATED", 4)
+    assert asked(isle).estimate.value.shape == (1, 5)
+    with pytest.raises(TooLarge, match=r"asks for 10 .* at most 9"):
+        asked(isle, sexes=("f", "m"))
+    with pytest.raises(TooLarge, match=r"asks for 5 .* at most 4"):
+        asked(isle, of="mode")
+
+
+def test_as_many_statements_for_one_as_for_all(
+    isle: Session, count_statements: Callable[[], AbstractContextManager[list[str]]]
+) -> None:
+    counts = []
+    for choices in ({"last": "2002"}, {"areas": ("cape", "north"), "sexes": ("f", "m", "p")}):
+        with count_statements() as statements:
+            asked(isle, **choices)
+        counts.append(len(statements))
+    assert counts[0] == counts[1] <= 8
