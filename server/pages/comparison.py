@@ -1,0 +1,204 @@
+"""What lies between these two? Any two population-years of one edition."""
+
+from dataclasses import dataclass
+from typing import ClassVar
+
+from server.charts.chart import Chart
+from server.exports.table import Table
+from server.pages import comparison_charts as charts
+from server.pages import comparison_tables as tables
+from server.pages import frames
+from server.pages.choices import Offer, offer
+from server.pages.page import Caution, Frame, Page
+from server.results.comparison import Comparison, comparison
+from server.results.questions import (
+    ComparisonQuestion,
+    PopulationYear,
+    PopulationYearQuestion,
+    address,
+)
+from server.sentences import basis, names
+from server.sentences import comparison as say
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.reasons import reason
+from server.sentences.standing import Headline
+from server.sentences.text import _
+from server.store.connect import Session
+from server.store.heading import Heading
+
+
+@dataclass(frozen=True, slots=True)
+class Choice:
+    """A plain form that leads to another pair under the same settings."""
+
+    action: str
+    offer: Offer
+    this: PopulationYear
+    that: PopulationYear
+    of: str
+    figures: str
+    settings: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ComparisonPage(Page):
+    """The difference of every figure, and the ages it is made of."""
+
+    template: ClassVar[str] = "comparison/page.html"
+    drawn: frozenset[str]  # keys of the pictures there are
+    further: tuple[Sentence, ...]
+    computed: tuple[Sentence, ...]
+    basis: tuple[Sentence, ...]
+    choice: Choice
+
+
+def build(session: Session, heading: Heading, question: ComparisonQuestion) -> ComparisonPage:
+    found = comparison(session, heading, question)
+    drawn = _charts(found, frames.source(heading))
+    asked = charts.asked(found, question.of)
+    return ComparisonPage(
+        frame=_frame(found),
+        answer=say.answer(
+            tables.pair(found), asked, reason(int(asked.difference.reason), found.settings)
+        ),
+        lead=_lead(found),
+        tables=_tables(found),
+        charts=drawn,
+        cautions=_cautions(found),
+        twins=frames.twins(heading, question),
+        drawn=frozenset(chart.key for chart in drawn),
+        further=_further(found),
+        computed=_computed(found),
+        basis=frames.basis(heading.edition.basis),
+        choice=_choice(found),
+    )
+
+
+def _charts(found: Comparison, source: str) -> tuple[Chart, ...]:
+    made = (charts.survivors, charts.life_expectancy, charts.unevenness)
+    return tuple(chart for chart in (draw(found, source) for draw in made) if chart is not None)
+
+
+def _tables(found: Comparison) -> tuple[Table, ...]:
+    made = [tables.figures(found)]
+    if found.contributions and not found.same:
+        made += [tables.contributions(found), tables.ages(found)]
+    return (*made, tables.survivors(found))
+
+
+def _frame(found: Comparison) -> Frame:
+    heading, question = found.heading, found.question
+    both, asked = tables.pair(found), charts.asked(found, question.of)
+    headline = None
+    if found.moved is not None:
+        label = _("Difference in {label}", label=names.inside(_(asked.indicator.label)))
+        headline = Headline(
+            label, asked.indicator.unit, float(asked.difference.value), found.moved.value
+        )
+    exchange = Piece(
+        _("exchange them"),
+        address(heading.collection.code, heading.edition.number, question.exchanged()),
+    )
+    return frames.pinned(
+        heading,
+        question,
+        title=_("{this} against {that}", this=both.this.whole, that=both.that.whole),
+        place=phrase(
+            _("{this} against {that}; {exchange}"),
+            this=_linked(found, question.this, both.this.whole),
+            that=_linked(found, question.that, both.that.whole),
+            exchange=exchange,
+        ),
+        figures=question.figures,
+        settings=question.settings,
+        notices=frames.notices(heading, question, found.moved, headline),
+    )
+
+
+def _linked(found: Comparison, of: PopulationYear, words: str) -> Piece:
+    question = PopulationYearQuestion(of, found.question.figures, found.question.settings)
+    heading = found.heading
+    return Piece(words, address(heading.collection.code, heading.edition.number, question))
+
+
+def _lead(found: Comparison) -> tuple[Sentence, ...]:
+    said: list[Sentence] = []
+    part, asked = found.contributions.get("e0"), charts.asked(found, "e0")
+    both = tables.pair(found)
+    if found.same:
+        return ()
+    if part is not None and asked.clear:
+        said.append(say.carried(*charts.most(found, part), part.difference))
+    said.append(say.evenness(both, charts.asked(found, "H")))
+    return tuple(sentence for sentence in said if sentence)
+
+
+def _computed(found: Comparison) -> tuple[Sentence, ...]:
+    path = phrase(
+        "{name} {sentence}",
+        name=Piece(_("Contributions."), emphasis="strong"),
+        sentence=_(
+            "They follow a straight line from one set of death rates to the other, so that they add"
+            " up to the difference before rounding (Horiuchi, Wilmoth and Pletcher, 2008); their"
+            " intervals are those of 200 simulated pairs. Arriaga’s formula stands beside them."
+        ),
+    )
+    return (*basis.computed(found.settings), path)
+
+
+def _cautions(found: Comparison) -> tuple[Caution, ...]:
+    sides = (found.this, found.that)
+    both = tables.pair(found)
+    fewest = min(float(side.panel.exposure.sum()) for side in sides)
+    provisional = {side.of.period for side in sides if side.loaded.status == "provisional"}
+    modelled = found.settings.open_interval != "one_over_m"
+    told = [
+        basis.provisional(sorted(provisional)),
+        basis.few_person_years(fewest, found.settings),
+        say.regrouped(
+            [tables.named(found, of).whole for of in found.regrouped],
+            _("{count} groups", count=len(found.grid)),
+            found.grid.open_age,
+        )
+        if found.regrouped
+        else None,
+        say.counted_twice(tables.named(found, found.overlap).whole)
+        if found.overlap and not found.same
+        else None,
+        *_undefined(found),
+        basis.law(found.settings, found.grid.open_age) if modelled else None,
+        say.arithmetic() if both.this != both.that else None,
+        *basis.reading(found.settings),
+    ]
+    return tuple(Caution(word, text) for word, text in (pair for pair in told if pair))
+
+
+def _undefined(found: Comparison) -> list[basis.Told]:
+    """Why H has no contributions, where it has none."""
+    code = int(found.difference["H"].reason)
+    if "H" in found.contributions or found.same:
+        return []
+    return [(_("Not compared"), reason(code, found.settings))]
+
+
+def _further(found: Comparison) -> tuple[Sentence, ...]:
+    return tuple(
+        phrase(
+            _("{who}: the life table and its pictures"),
+            who=_linked(found, of, names.first_capital(tables.named(found, of).whole)),
+        )
+        for of in dict.fromkeys((found.question.this, found.question.that))
+    )
+
+
+def _choice(found: Comparison) -> Choice:
+    held, heading, question = found.holdings, found.heading, found.question
+    return Choice(
+        action=f"/c/{heading.collection.code}/{heading.edition.number}/{question.view}",
+        offer=offer(held),
+        this=question.this,
+        that=question.that,
+        of=question.of,
+        figures=question.figures,
+        settings=question.settings,
+    )

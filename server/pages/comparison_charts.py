@@ -1,0 +1,233 @@
+"""The pictures of a comparison: two survival curves, and what each age adds."""
+
+from typing import Literal
+
+import numpy as np
+
+from engine.indicators import find
+from server.charts.chart import At, Chart, Series
+from server.charts.scales import ticks
+from server.pages.comparison_tables import PRINTED, RADIX, pair
+from server.pages.drawing import LONGER_LIFE, WHOLE_LIFE, at_age, places, values
+from server.results.comparison import Comparison, Contribution, Side
+from server.sentences import comparison as say
+from server.sentences.numbers import number
+from server.sentences.text import _
+
+LATE = 60  # the age past which a share of the difference is told
+ROLES = ("s1", "s2")
+
+
+def axis(found: Comparison) -> tuple[float, float]:
+    """One age axis for all pictures of the page, with room for the open group."""
+    return WHOLE_LIFE if found.groups.open_age < WHOLE_LIFE[1] else LONGER_LIFE
+
+
+def asked(found: Comparison, key: str) -> say.Answer:
+    return say.Answer(
+        find(key), found.this.estimates[key], found.that.estimates[key], found.difference[key]
+    )
+
+
+def survivors(found: Comparison, source: str) -> Chart | None:
+    tables = (found.this.table, found.that.table)
+    if not all(np.isfinite(table.lx).all() and np.isfinite(table.ex[0]) for table in tables):
+        return None
+    late = tables[0].grid.position(LATE) if tables[0].grid.has(LATE) else None
+    lived = tables[0].Lx - tables[1].Lx
+    share = float(lived[late:].sum() / lived.sum()) if late and lived.sum() else 0.0
+    both, (_low, top) = pair(found), axis(found)
+    return Chart(
+        key="survivors",
+        finding=say.survivors(both, asked(found, "e0"), share, LATE),
+        unit=_(
+            "Survivors to each age, of 100,000 born; the space between the curves is the difference"
+            " in life expectancy"
+        ),
+        source=source,
+        described=_(
+            "Two curves of survivors by age, {this} and {that}, the space between them hatched; the"
+            " numbers are in the table below it.",
+            this=both.short(both.this),
+            that=both.short(both.that),
+        ),
+        x_kind="age",
+        x_range=axis(found),
+        y_title=_("survivors, thousands"),
+        y_range=(0, 1.03 * RADIX),
+        y_ticks=tuple(RADIX * at / 4 for at in range(5)),
+        y_text=tuple(f"{at}" for at in (0, 25, 50, 75, 100)),
+        hover=_("age %{x}: %{y:,.0f} survivors"),
+        table="survivors",
+        size="tall",
+        series=(
+            _curve(found, found.this, both.short(both.this), "s1", "this", top),
+            _curve(found, found.that, both.short(both.that), "s2", "that", top),
+        ),
+        between=(0, 1),
+    )
+
+
+def _curve(
+    found: Comparison,
+    side: Side,
+    label: str,
+    role: str,
+    weight: Literal["this", "that"],
+    top: float,
+) -> Series:
+    """The higher curve is named to its right, the lower one to its left."""
+    table, other = side.table, (found.that if side is found.this else found.this).table
+    starts = np.array(table.grid.starts, float)
+    inside = starts <= top
+    upper = bool(table.ex[0] >= other.ex[0]) == (side is found.this) or table.ex[0] > other.ex[0]
+    age = 82.0 if upper else 62.0
+    height = RADIX * at_age(table.grid, table.lx, age)
+    at = (
+        At(age + 2, height, "left", 4, narrow_x=68, narrow_y=1.0 * RADIX)
+        if upper
+        else At(age, height - 0.06 * RADIX, "right", -4)
+    )
+    return Series(
+        label,
+        places(starts[inside]),
+        values(RADIX * table.lx[inside]),
+        sex=side.of.sex,  # type: ignore[arg-type]
+        role=role,
+        weight=weight,
+        at=at,
+    )
+
+
+def life_expectancy(found: Comparison, source: str) -> Chart | None:
+    part = found.contributions.get("e0")
+    if part is None or found.same:
+        return None
+    span, carried = most(found, part)
+    return _bars(
+        found,
+        part,
+        key="by-age",
+        of="e0",
+        finding=say.by_age(asked(found, "e0"), span, carried),
+        unit=_(
+            "Contribution of each age group to the difference in life expectancy at birth, with"
+            " {level} % intervals",
+            level=round(100 * found.settings.level),
+        ),
+        title=_("years"),
+        decimals=2,
+        source=source,
+    )
+
+
+def unevenness(found: Comparison, source: str) -> Chart | None:
+    part = found.contributions.get("H")
+    if part is None or found.same:
+        return None
+    age = turning(found, part)
+    starts = np.array(found.groups.starts)
+    scaled = PRINTED["H"] * part.by_group
+    return _bars(
+        found,
+        part,
+        key="unevenness",
+        of="H",
+        finding=say.unevenness(
+            float(scaled[starts < age].sum()), float(scaled[starts >= age].sum()), age
+        ),
+        unit=_(
+            "Contribution of each age group to the difference in relative unevenness (H),"
+            " thousandths, with {level} % intervals; hatched bars lower it",
+            level=round(100 * found.settings.level),
+        ),
+        title=_("thousandths of H"),
+        decimals=1,
+        source=source,
+    )
+
+
+def turning(found: Comparison, part: Contribution) -> int:
+    """The start of a group that best parts the ages into two of unlike sign."""
+    running = np.cumsum(part.by_group)[:-1]
+    return found.groups.starts[int(np.argmax(np.abs(2 * running - part.by_group.sum()))) + 1]
+
+
+def most(found: Comparison, part: Contribution) -> tuple[str, float]:
+    """The shortest run of groups that holds at least half of the difference, and what it holds."""
+    starts, total = found.groups.starts, float(part.by_group.sum())
+    ends = (*starts[1:], max(starts[-1] + 5, 105))
+    sums = np.concatenate([[0.0], np.cumsum(part.by_group)])
+    best = (ends[-1], 0, len(starts))
+    for begin in range(len(starts)):
+        for end in range(begin + 1, len(starts) + 1):
+            held = (sums[end] - sums[begin]) / total if total else 0.0
+            if held >= 0.5 and ends[end - 1] - starts[begin] < best[0]:
+                best = (ends[end - 1] - starts[begin], begin, end)
+    _width, begin, end = best
+    carried = float(sums[end] - sums[begin])
+    if end == len(starts):
+        return _("{first} and over", first=starts[begin]), carried
+    if end - begin == 1:
+        return found.groups.labels[begin], carried
+    return _("{first} to {last}", first=starts[begin], last=starts[end] - 1), carried
+
+
+def _bars(
+    found: Comparison,
+    part: Contribution,
+    *,
+    key: str,
+    of: str,
+    finding: str,
+    unit: str,
+    title: str,
+    decimals: int,
+    source: str,
+) -> Chart:
+    groups, (_first, top) = found.groups, axis(found)
+    widths = np.append(groups.widths[:-1], min(10.0, top - groups.open_age))
+    mids = np.array(groups.starts, float) + widths / 2
+    y, low, high = (PRINTED[of] * column for column in (part.by_group, part.low, part.high))
+    bottom = min(0.0, float(np.nanmin(np.fmin(y, low))))
+    ceiling = max(0.0, float(np.nanmax(np.fmax(y, high))))
+    room = 0.06 * (ceiling - bottom)
+    shown = ticks(bottom, ceiling)
+    return Chart(
+        key=key,
+        finding=finding,
+        unit=unit,
+        source=source,
+        described=_(
+            "{unit}; the numbers are in the table of contributions.",
+            unit=unit,
+        ),
+        x_kind="age",
+        x_range=axis(found),
+        y_title=title,
+        y_range=(bottom - room if bottom < 0 else 0.0, ceiling + room),
+        y_ticks=shown,
+        y_text=tuple(
+            number(at, max(0, decimals if abs(at) < 1 else decimals - 1), signed=bottom < 0)
+            for at in shown
+        ),
+        hover="%{customdata}: %{y:.2f}",
+        table="contributions",
+        series=(
+            Series(
+                unit,
+                places(mids),
+                values(y),
+                draw="bars",
+                low=values(low),
+                high=values(high),
+                widths=places(widths),
+                names=groups.labels,
+            ),
+        ),
+        foot_row=tuple(
+            (float(mid), number(float(value), decimals, signed=True))
+            for mid, value in zip(mids, y, strict=True)
+        ),
+        foot_sum=number(float(y.sum()), decimals, signed=True),
+    )

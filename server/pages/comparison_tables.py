@@ -1,0 +1,175 @@
+"""The tables of a comparison page, from which its pictures and twins are made too."""
+
+from collections.abc import Iterable, Sequence
+
+import numpy as np
+
+from engine.ages import Array
+from engine.indicators import find
+from server.exports.table import Cell, Column, Row, Table
+from server.pages.cells import columns, gap, number, triple
+from server.results.comparison import DECOMPOSED, Comparison, Contribution
+from server.results.questions import PopulationYear
+from server.sentences import comparison as say
+from server.sentences.text import _
+
+RADIX = 100_000
+THOUSAND = 1_000  # contributions to H are printed in thousandths
+PRINTED = {"e0": 1, "H": THOUSAND}
+
+
+def named(found: Comparison, of: PopulationYear) -> say.Named:
+    return say.Named(of.sex, found.holdings.name(of.area), of.period)
+
+
+def pair(found: Comparison) -> say.Pair:
+    return say.Pair(named(found, found.this.of), named(found, found.that.of))
+
+
+def figures(found: Comparison) -> Table:
+    """Every usual indicator on both sides, and the difference, each with its interval."""
+    both = pair(found)
+    heads = (
+        Column("indicator", _("Indicator")),
+        *columns("this", both.short(both.this), 1),
+        *columns("that", both.short(both.that), 1),
+        *columns("difference", _("difference"), 1, signed=True),
+    )
+    note = _(
+        "Under each figure its {level} % interval, which covers chance in deaths only."
+        " Difference: {this} less {that}, taken before rounding.",
+        level=round(100 * found.settings.level),
+        this=both.this.whole,
+        that=both.that.whole,
+    )
+    rows = tuple(_figure_row(found, key) for key in found.difference)
+    return Table("figures", _("The figures of both sides"), heads, rows, note)
+
+
+def _figure_row(found: Comparison, key: str) -> Row:
+    indicator = find(key)
+    cells: list[Cell] = [_(indicator.label)]
+    for side in (found.this.estimates[key], found.that.estimates[key], found.difference[key]):
+        cells += triple(side, indicator.unit, found.settings)
+    return Row(tuple(cells), second=_(indicator.unit.label), decimals=indicator.unit.decimals)
+
+
+def survivors(found: Comparison) -> Table:
+    """Survivors of 100,000 born on both sides, at the starts of the groups."""
+    both = pair(found)
+    heads = (
+        Column("age", _("age"), decimals=0),
+        Column("this", both.short(both.this), decimals=0),
+        Column("that", both.short(both.that), decimals=0),
+        Column("difference", _("difference"), decimals=0, signed=True),
+    )
+    rows = []
+    for age in found.groups.starts:
+        at = found.this.table.grid.position(age)
+        here, there = (RADIX * float(side.table.lx[at]) for side in (found.this, found.that))
+        rows.append(Row((age, number(here), number(there), number(here - there))))
+    return Table("survivors", _("Survivors to each age, of 100,000 born"), heads, tuple(rows))
+
+
+def contributions(found: Comparison) -> Table:
+    """What each age group adds to the differences in e0 and H, with the sums."""
+    heads = (
+        Column("age", _("age")),
+        *columns("e0", _("life expectancy"), 2, unit=_("years"), signed=True),
+        *columns("H", _("unevenness"), 1, unit=_("thousandths of H"), signed=True),
+    )
+    parts = [(found.contributions.get(key), PRINTED[key], key) for key in DECOMPOSED]
+    rows = []
+    for at, label in enumerate(found.groups.labels):
+        cells: list[Cell] = [label]
+        for part, scale, key in parts:
+            cells += _cells(found, part, scale, key, at)
+        rows.append(Row(tuple(cells)))
+    rows += _remainder_row(found)
+    total: list[Cell] = [_("sum: the difference")]
+    for part, scale, key in parts:
+        if part is None:
+            total += [_missing(found, key)] * 3
+            continue
+        limits = (found.difference[key].low, found.difference[key].high)
+        total += [scale * part.difference, *(number(scale * float(end)) for end in limits)]
+    return Table(
+        "contributions",
+        _("Contribution of each age to the differences"),
+        heads,
+        tuple(rows),
+        total=Row(tuple(total)),
+    )
+
+
+def _cells(
+    found: Comparison, part: Contribution | None, scale: float, key: str, at: int
+) -> Sequence[Cell]:
+    if part is None:
+        return [_missing(found, key)] * 3
+    return [number(scale * float(column[at])) for column in (part.by_group, part.low, part.high)]
+
+
+def _missing(found: Comparison, key: str) -> Cell:
+    return gap(int(found.difference[key].reason), found.settings)
+
+
+def _remainder_row(found: Comparison) -> Iterable[Row]:
+    """A row of its own for what no age accounts for, where it is more than rounding."""
+    words, cells = "", list[Cell]()
+    for key in DECOMPOSED:
+        part, scale = found.contributions.get(key), PRINTED[key]
+        if part is None:
+            cells += [_missing(found, key)] * 3
+            continue
+        words = words or say.remainder(part.remainder, part.difference)
+        none = number(np.nan, _("no age, hence no interval"))
+        cells += [scale * part.remainder, none, none]
+    return [Row((words, *cells))] if words else []
+
+
+def ages(found: Comparison) -> Table:
+    """Each age of the shared grid by itself; for e0 Arriaga's contributions stand beside."""
+    heads = (
+        Column("age", _("age")),
+        Column("e0", _("life expectancy"), _("years"), 3, signed=True),
+        Column("e0_arriaga", _("by Arriaga’s formula"), _("years"), 3, signed=True),
+        Column("H", _("unevenness"), _("thousandths of H"), 2, signed=True),
+    )
+    own = len(found.grid)
+    beside = np.append(found.arriaga[: own - 1], found.arriaga[own - 1 :].sum())
+    made: list[tuple[Array | None, float, str]] = [
+        (_by_age(found, "e0"), 1, "e0"),
+        (beside, 1, "e0"),
+        (_by_age(found, "H"), THOUSAND, "H"),
+    ]
+    rows = tuple(
+        Row((label, *(_one(found, column, scale, key, at) for column, scale, key in made)))
+        for at, label in enumerate(found.grid.labels)
+    )
+    sums = (
+        _missing(found, key) if column is None else number(scale * float(column.sum()))
+        for column, scale, key in made
+    )
+    return Table(
+        "ages",
+        _("Contribution of each single age group, by two methods"),
+        heads,
+        rows,
+        _(
+            "Both columns for life expectancy add up to its difference; between ages they may part"
+            " where many rates change at once."
+        ),
+        total=Row((_("sum"), *sums)),
+    )
+
+
+def _by_age(found: Comparison, key: str) -> Array | None:
+    part = found.contributions.get(key)
+    return None if part is None else part.by_age
+
+
+def _one(found: Comparison, column: Array | None, scale: float, key: str, at: int) -> Cell:
+    if column is None:
+        return _missing(found, key)
+    return number(scale * float(column[at]))

@@ -1,0 +1,347 @@
+"""What is said of two population-years: the answer, and the finding of each picture."""
+
+import math
+from dataclasses import dataclass
+
+from engine.estimates import Estimate
+from engine.indicators import Indicator
+from server.sentences import names
+from server.sentences.movements import (
+    Movement,
+    bracketed,
+    has_interval,
+    limits,
+    movement,
+    shown,
+    size_limits,
+    years,
+)
+from server.sentences.numbers import number, whole
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.text import _
+
+HARDLY = (Movement.BARELY_MORE, Movement.BARELY_LESS)
+HIGHER = (Movement.MORE, Movement.BARELY_MORE)
+
+
+@dataclass(frozen=True, slots=True)
+class Named:
+    """One side as sentences call it."""
+
+    sex: str
+    area: str  # its name
+    period: str
+
+    @property
+    def who(self) -> str:
+        """Inside a sentence, without the year."""
+        return names.population(self.sex, self.area)
+
+    @property
+    def at_head(self) -> str:
+        return names.population_first(self.sex, self.area)
+
+    @property
+    def whole(self) -> str:
+        """Inside a sentence, with the year: men of Northlade in 2014."""
+        return _("{who} in {year}", who=self.who, year=self.period)
+
+
+@dataclass(frozen=True, slots=True)
+class Pair:
+    """Both sides, and what they share."""
+
+    this: Named
+    that: Named
+
+    @property
+    def same_people(self) -> bool:
+        """One area and sex: only the year differs."""
+        return (self.this.sex, self.this.area) == (self.that.sex, self.that.area)
+
+    @property
+    def same_year(self) -> bool:
+        return self.this.period == self.that.period
+
+    def short(self, side: Named) -> str:
+        """A side as a label: no more words than tell it from the other."""
+        parts = []
+        if self.this.area != self.that.area:
+            parts.append(side.area)
+        if self.this.sex != self.that.sex or not parts:
+            parts.append(names.sex(side.sex))
+        if not self.same_year:
+            parts.append(side.period)
+        return ", ".join(parts)
+
+
+@dataclass(frozen=True, slots=True)
+class Answer:
+    """The indicator asked for on both sides, and its difference."""
+
+    indicator: Indicator
+    this: Estimate
+    that: Estimate
+    difference: Estimate
+
+    @property
+    def kind(self) -> Movement:
+        return movement(self.difference, self.indicator.unit)
+
+    @property
+    def clear(self) -> bool:
+        """The difference goes beyond chance, and is seen after rounding."""
+        return self.kind in (Movement.MORE, Movement.LESS, *HARDLY)
+
+
+def answer(pair: Pair, of: Answer, why_not: str) -> Sentence:
+    """The page's first line. `why_not` says why there is no difference where there is none."""
+    label = names.inside(_(of.indicator.label))
+    if of.kind is Movement.UNKNOWN:
+        return phrase(
+            _("The difference in {label} between {this} and {that} cannot be given. {why}"),
+            label=label,
+            this=pair.this.whole,
+            that=pair.that.whole,
+            why=why_not,
+        )
+    if pair.this == pair.that:
+        return phrase(
+            _(
+                "Both sides are {this}: there is nothing to compare. Choose another area, sex or"
+                " year."
+            ),
+            this=pair.this.whole,
+        )
+    if of.kind in (Movement.NOT_CLEAR, Movement.TOO_SMALL):
+        return phrase(
+            _("No clear difference in {label} between {this} and {that}: {value} {interval}."),
+            label=label,
+            this=pair.this.whole,
+            that=pair.that.whole,
+            value=_amount(of, signed=True),
+            interval=bracketed(limits(of.difference, of.indicator.unit, signed=True)),
+        )
+    parts: dict[str, Piece | str] = {
+        "amount": _amount(of),
+        "interval": _size(of),
+        "here": shown(of.this, of.indicator.unit),
+        "there": shown(of.that, of.indicator.unit),
+    }
+    if of.indicator.key == "e0":
+        return _life_expectancy(pair, of, parts)
+    text = (
+        _(
+            "{label} was {amount} higher for {this} than for {that} {interval}: {here} against"
+            " {there}."
+        )
+        if of.difference.value > 0
+        else _(
+            "{label} was {amount} lower for {this} than for {that} {interval}: {here} against"
+            " {there}."
+        )
+    )
+    return phrase(
+        text, label=_(of.indicator.label), this=pair.this.whole, that=pair.that.whole, **parts
+    )
+
+
+def _life_expectancy(pair: Pair, of: Answer, parts: dict[str, Piece | str]) -> Sentence:
+    more = of.difference.value > 0
+    amount = (
+        _("{amount} more", amount=parts["amount"])
+        if more
+        else _("{amount} less", amount=parts["amount"])
+    )
+    parts = {**parts, "amount": amount, "this": pair.this.at_head, "that": pair.that.who}
+    if pair.same_people:
+        return phrase(
+            _(
+                "{this} could expect {amount} of life in {year} than in {other} {interval}: {here}"
+                " against {there}."
+            ),
+            year=pair.this.period,
+            other=pair.that.period,
+            **parts,
+        )
+    if pair.same_year:
+        return phrase(
+            _(
+                "{this} in {year} could expect {amount} of life than {that} {interval}: {here}"
+                " against {there}."
+            ),
+            year=pair.this.period,
+            **parts,
+        )
+    return phrase(
+        _(
+            "{this} in {year} could expect {amount} of life than {that} in {other} {interval}:"
+            " {here} against {there}."
+        ),
+        year=pair.this.period,
+        other=pair.that.period,
+        **parts,
+    )
+
+
+def _amount(of: Answer, *, signed: bool = False) -> str:
+    """The size of the difference with its unit."""
+    unit = of.indicator.unit
+    if unit.key == "years" and not signed:
+        return years(float(of.difference.value), unit.decimals)
+    value = unit.scale * float(of.difference.value)
+    text = number(value if signed else abs(value), unit.decimals, signed=signed)
+    if unit.key == "ratio":
+        return text
+    if unit.label.startswith("%"):
+        return f"{text}\N{NO-BREAK SPACE}" + _("percentage points")
+    return f"{text}\N{NO-BREAK SPACE}{_(unit.label)}"
+
+
+def _size(of: Answer) -> Piece:
+    if not has_interval(of.difference):
+        return bracketed(_("no interval can be given"))
+    text = size_limits(of.difference, of.indicator.unit)
+    if of.kind in HARDLY:
+        text = _("{interval}, hardly more than chance alone could do", interval=text)
+    return bracketed(text)
+
+
+def carried(ages: str, part: float, difference: float, unit_decimals: int = 1) -> Sentence:
+    """Which ages hold most of a difference in life expectancy."""
+    return phrase(
+        _("Ages {ages} carry {part} of the {whole}."),
+        ages=ages,
+        part=number(abs(part), unit_decimals),
+        whole=years(difference, unit_decimals),
+    )
+
+
+def evenness(pair: Pair, of: Answer) -> Sentence:
+    """Whether lives were of more equal length; `of` is H."""
+    here, there = (shown(side, of.indicator.unit) for side in (of.this, of.that))
+    if of.kind in (Movement.UNKNOWN, Movement.WITHOUT_INTERVAL):
+        return ()
+    if of.kind in (Movement.NOT_CLEAR, Movement.TOO_SMALL):
+        return phrase(
+            _(
+                "How unequal length of life is did not clearly differ: relative unevenness {here}"
+                " against {there}."
+            ),
+            here=here,
+            there=there,
+        )
+    if of.kind in HIGHER:
+        text = (
+            _(
+                "Length of life also became less even: relative unevenness rose from {there} to"
+                " {here}."
+            )
+            if pair.same_people and pair.this.period > pair.that.period
+            else _(
+                "Length of life was less even on this side: relative unevenness {here} against"
+                " {there}."
+            )
+        )
+    else:
+        text = (
+            _(
+                "Length of life also became more even: relative unevenness fell from {there} to"
+                " {here}."
+            )
+            if pair.same_people and pair.this.period > pair.that.period
+            else _(
+                "Length of life was more even on this side: relative unevenness {here} against"
+                " {there}."
+            )
+        )
+    return phrase(text, here=here, there=there)
+
+
+def survivors(pair: Pair, of: Answer, share: float, from_age: int) -> str:
+    """`of` is life expectancy; `share` of its difference lies at `from_age` and above."""
+    if not of.clear:
+        return _("Survivors to each age on the two sides")
+    amount = years(float(of.difference.value))
+    if not 0 < share < 1:
+        return _("The hatched space is the difference: {amount}", amount=amount)
+    return _(
+        "The hatched space is the difference: {amount}, {share} of it lived past {age}",
+        amount=amount,
+        share=f"{whole(100 * share)}\N{NO-BREAK SPACE}%",
+        age=from_age,
+    )
+
+
+def by_age(of: Answer, ages: str, part: float) -> str:
+    """What the picture of contributions to life expectancy shows; `ages` hold `part` of it."""
+    if not of.clear:
+        return _("What each age adds to the difference in life expectancy")
+    return _(
+        "Ages {ages} make most of the difference: {part} of {whole}",
+        ages=ages,
+        part=number(abs(part), 1),
+        whole=years(float(of.difference.value)),
+    )
+
+
+def unevenness(below: float, above: float, age: int) -> str:
+    """Contributions to H summed below and above an age, in thousandths."""
+
+    def says(value: float) -> str:
+        return number(value, 1, signed=True)
+
+    if below < 0 < above:
+        return _(
+            "Ages below {age} make length of life more even ({below} thousandths of H); those"
+            " above work against it ({above})",
+            age=age,
+            below=says(below),
+            above=says(above),
+        )
+    if above < 0 < below:
+        return _(
+            "Ages below {age} make length of life less even (+{below} thousandths of H); those"
+            " above work against it ({above})",
+            age=age,
+            below=number(below, 1),
+            above=says(above),
+        )
+    return _(
+        "Ages below {age} move relative unevenness by {below} thousandths, those above by {above}",
+        age=age,
+        below=says(below),
+        above=says(above),
+    )
+
+
+def regrouped(sides: list[str], ages: str, open_age: int) -> tuple[str, str]:
+    return _("Age groups"), _(
+        "The two were counted in different age groups. Both are read on those they share ({ages},"
+        " open at {open_age}); regrouped for it: {sides}.",
+        ages=ages,
+        open_age=open_age,
+        sides=names.listed(sides),
+    )
+
+
+def counted_twice(which: str) -> tuple[str, str]:
+    return _("Counted in both"), _(
+        "The deaths of {which} are part of both sides. The intervals of the differences count"
+        " them once; those of the ages' contributions take the two sides as independent.",
+        which=which,
+    )
+
+
+def remainder(value: float, difference: float) -> str:
+    """Why a row of its own stands beside the ages; empty where rounding is all there is."""
+    if not math.isfinite(value) or abs(value) <= 1e-9 * max(abs(difference), 1e-9):
+        return ""
+    return _("rule of the first year, or a law's weights")
+
+
+def arithmetic() -> tuple[str, str]:
+    return _("Contributions"), _(
+        "A contribution is owed to an age in the arithmetic sense: it names no cause. Its interval"
+        " covers chance in deaths only."
+    )
