@@ -10,7 +10,6 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
-
 from numpy.typing import NDArray
 
 from engine.ages import Array

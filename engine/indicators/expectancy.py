@@ -19,7 +19,7 @@ def at_age(age: int) -> Indicator:
         return ex[..., grid.position(age)] if grid.has(age) else np.full(ex.shape[:-1], np.nan)
 
     def partials(chain: Chain) -> Partials:
-        return Partials(ex=np.eye(len(chain.table.grid))[chain.table.grid.position(age)])
+        return Partials(ex=(np.array(chain.table.grid.starts) == age).astype(float))
 
     return Indicator(
         key=f"e{age}",

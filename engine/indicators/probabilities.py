@@ -24,10 +24,9 @@ def between(first: int, last: int, *, label: str, per: str, definition: str) -> 
 
     def partials(chain: Chain) -> Partials:
         start, end = reach(chain)
-        by_lx = np.zeros_like(chain.table.lx)
-        by_lx[..., chain.table.grid.position(first)] = end / start**2
-        by_lx[..., chain.table.grid.position(last)] = -1 / start
-        return Partials(lx=by_lx)
+        ages = np.array(chain.table.grid.starts)
+        by_start, by_end = (end / start**2)[..., None], (-1 / start)[..., None]
+        return Partials(lx=by_start * (ages == first) + by_end * (ages == last))
 
     years = last - first
     return Indicator(

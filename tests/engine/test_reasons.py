@@ -50,9 +50,11 @@ def test_too_large_an_open_group_hides_what_is_spread_over_it() -> None:
     ends_early = SOUND.regroup(EARLY_END)
     assert run(ends_early, PLAIN).open_reach > 0.05
     assert only(ends_early, Reason.OPEN_GROUP_TOO_LARGE) == SPREAD
-    assert only(ends_early, Reason.NONE, LAW) == set(INDICATORS)
+    # the groups' peak may lie beyond 85; the smooth curve has one below
+    at_edge = {"mode_raw", "mode_parabola"}
+    assert only(ends_early, Reason.MODE_AT_EDGE, LAW) == at_edge
     generous = replace(PLAIN, open_share=0.9)
-    assert only(ends_early, Reason.NONE, generous) == set(INDICATORS)
+    assert only(ends_early, Reason.MODE_AT_EDGE, generous) == at_edge
 
 
 def test_the_median_is_lost_in_an_open_group_that_half_reach() -> None:
