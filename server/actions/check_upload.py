@@ -3,7 +3,7 @@
 from server.intake.mapping import Mapping
 from server.intake.parsing import READER, Handed, parse
 from server.intake.report import Report
-from server.store import editions, uploads
+from server.store import areas, editions, uploads
 from server.store.connect import Session, transaction
 from server.store.errors import Refused
 from server.store.records import Upload
@@ -15,15 +15,17 @@ def check_upload(session: Session, *, upload_id: int) -> Report:
     Raises: Missing; Refused where a file has no mapping yet, or the upload is an edition already.
     """
     upload = uploads.find(session, upload_id)
-    report = Report.of(parse(handed(session, upload)))
     standing = editions.newest_standing(session, upload.collection)
+    base = standing.number if standing else 0
+    known = areas.listing(session, upload.collection, base) if base else ()
+    report = Report.of(parse(handed(session, upload), known))
     with transaction(session):
         uploads.set_report(
             session,
             upload_id,
             report=report.to_json(),
             reader=READER,
-            base=standing.number if standing else 0,
+            base=base,
         )
     return report
 

@@ -2,6 +2,7 @@
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from typing import TypeVar
 
 import numpy as np
 import pandas as pd
@@ -17,6 +18,8 @@ UNREADABLE = -1
 TOTAL = -2  # age of a row that is a total over the ages
 Ints = NDArray[np.int64]
 Flags = NDArray[np.bool_]
+Whole = TypeVar("Whole", int, Ints)
+YEARS = 10_000  # places of one area and sex lie this close together
 
 
 @dataclass(frozen=True, slots=True)
@@ -43,15 +46,20 @@ class Cells:
         return place_of(self.area, self.sex, self.year)
 
 
-def place_of(area: Ints, sex: Ints, year: Ints) -> Ints:
-    return (area * len(SEXES) + sex) * 10_000 + year
+def place_of(area: Whole, sex: Whole, year: Whole) -> Whole:
+    return (area * len(SEXES) + sex) * YEARS + year
 
 
-def parts_of(place: int) -> tuple[int, str, int]:
-    """Number of the area, sex and year of a place."""
-    rest, year = divmod(place, 10_000)
+def parts_of(place: Whole) -> tuple[Whole, Whole, Whole]:
+    """Area, sex and year of a place, or of each of many; areas and sexes by their numbers."""
+    rest, year = divmod(place, YEARS)
     area, sex = divmod(rest, len(SEXES))
-    return area, SEXES[sex], year
+    return area, sex, year
+
+
+def sexes_of(persons: Whole) -> tuple[Whole, Whole]:
+    """Places of women and of men beside a place of persons."""
+    return persons - 2 * YEARS, persons - YEARS
 
 
 def codes_of(sheet: Sheet) -> list[str]:

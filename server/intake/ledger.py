@@ -7,7 +7,8 @@ from functools import cached_property
 import numpy as np
 
 from engine.ages import AgeGrid, Array
-from server.intake.cells import Ints, parts_of, place_of
+from engine.panel import SEXES
+from server.intake.cells import Ints, parts_of, place_of, sexes_of
 from server.intake.problems import Value
 from server.intake.schedules import Block
 
@@ -44,7 +45,8 @@ class Ledger:
     delivered: frozenset[int]  # numbers of areas kept as delivered
     blocks: tuple[Block, ...]
     spoiled: Ints  # places with errors; what is missing there is not missed
-    unplaced: bool  # rows exist whose area, sex or year is not known
+    unplaced: bool  # rows exist whose area, sex or year is not known, or files that were not read
+    elsewhere: bool  # the edition that stands has parts of the whole that are not handed in here
     age_totals: tuple[AgeTotal, ...]
 
     def of(self, measure: str) -> tuple[Block, ...]:
@@ -61,19 +63,20 @@ class Ledger:
 
     def places(self, measure: str) -> Ints:
         """All places that have the measure, in order."""
-        found = [block.place for block in self.of(measure)]
-        return np.sort(np.concatenate(found)) if found else np.zeros(0, np.int64)
+        none = np.zeros(0, np.int64)
+        places = np.concatenate([none, *(block.place for block in self.of(measure))])
+        return np.asarray(np.sort(places), np.int64)
 
     def named(self, place: int) -> dict[str, Value]:
         """Area, sex and year of a place, as values of a fault."""
         area, sex, year = parts_of(place)
-        return {"area": self.codes[area], "sex": sex, "year": str(year)}
+        return {"area": self.codes[area], "sex": SEXES[sex], "year": str(year)}
 
     def both_sexes(self, measure: str) -> Ints:
         """Places of persons where women and men have the measure too."""
         places = self.places(measure)
-        persons = places[(places // 10_000) % 3 == 2]
-        women, men = persons - 20_000, persons - 10_000
+        persons = places[parts_of(places)[1] == SEXES.index("p")]
+        women, men = sexes_of(persons)
         return persons[np.isin(women, places) & np.isin(men, places)]
 
     def parts(self, place: int, measure: str) -> tuple[list[Line], list[str]]:
@@ -84,7 +87,7 @@ class Ledger:
         for area, code in enumerate(self.codes):
             if area == self.whole:
                 continue
-            at = int(place_of(area, "fmp".index(sex), year))
+            at = place_of(area, sex, year)
             if at in lines:
                 found.append(lines[at])
             else:
@@ -93,7 +96,8 @@ class Ledger:
 
     def wholes(self, measure: str) -> list[int]:
         """Places of the whole that have the measure."""
-        return [place for place in self.lines.get(measure, {}) if parts_of(place)[0] == self.whole]
+        places = self.places(measure)
+        return places[parts_of(places)[0] == self.whole].tolist()
 
     def without_totals(self) -> "Ledger":
         """Without what is summed anyway: persons beside both sexes, the whole beside all parts."""
@@ -153,7 +157,7 @@ def _where(blocks: tuple[Block, ...]) -> Ints:
 def summed(lines: list[Line], grid: AgeGrid) -> Array:
     """Sum of some lines on a grid all of them can be brought to, [age]."""
     parts = [block.grid.regroup(block.values[line], grid) for block, line in lines]
-    return np.sum(parts, axis=0)
+    return np.asarray(np.sum(parts, axis=0), np.float64)
 
 
 def common_grid(lines: list[Line]) -> AgeGrid:

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from engine.panel import SEXES
 from server.intake.cells import (
     TOTAL,
     UNREADABLE,
@@ -19,7 +20,6 @@ from server.intake.cells import (
     whole_code,
 )
 from server.intake.checks import ages, columns, fields, files, plausibility, series, totals
-from server.intake.checks.check import Marks, RowCheck, Subject
 from server.intake.layout import layout
 from server.intake.ledger import AgeTotal, Ledger
 from server.intake.mapping import ROLES, Mapping
@@ -70,9 +70,11 @@ class _Sorted:
     age_totals: list[AgeTotal]
 
 
-def parse(handed: Sequence[Handed]) -> Parsed:
+def parse(handed: Sequence[Handed], standing: Sequence[Area] = ()) -> Parsed:
     """Read the files of one upload. Never raises on bad content: it collects all problems.
 
+    `standing` are the areas of the edition that stands: parts of the whole that are not handed in
+    again are not missed. The schedules do not depend on them.
     Raises: ValueError where a role is unknown or comes twice.
     """
     roles = [file.role for file in handed]
@@ -94,7 +96,14 @@ def parse(handed: Sequence[Handed]) -> Parsed:
     problems += clashes
     done = [_sorted(cells(sheet, codes)) for sheet in sheets]
     problems += [problem for part in done for problem in part.problems]
-    ledger = _ledger(done, codes, areas, missing_files=bool(unread) or len(sheets) < len(handed))
+    parts = {area.code for area in standing if area.parent and area.parent == _whole(handed)}
+    ledger = _ledger(
+        done,
+        codes,
+        areas,
+        elsewhere=bool(parts - set(codes)),
+        unplaced=len(sheets) < len(handed) or any(part.unplaced for part in done),
+    )
     for check in (*series.CHECKS, *totals.CHECKS, *plausibility.CHECKS):
         problems += check.problems(ledger)
     return Parsed(
@@ -151,16 +160,18 @@ def _sorted(read: Cells) -> _Sorted:
     problems: list[Problem] = []
     labelled = np.ones(len(sheet), bool)  # every label of the row could be read
     sound = labelled.copy()
-    for check, marks in _marks(fields.CHECKS, read):
-        problems += check.problems(marks, sheet.row, sheet.name)
-        sound &= ~marks.failing
-        if check.key not in fields.OF_NUMBERS:
-            labelled &= ~marks.failing
+    for field_check in fields.CHECKS:
+        for marks in field_check.mark(read):
+            problems += field_check.problems(marks, sheet.row, sheet.name)
+            sound &= ~marks.failing
+            if field_check.key not in fields.OF_NUMBERS:
+                labelled &= ~marks.failing
     rows = ordered(read, labelled)
     failing = np.zeros(len(rows.take), bool)
-    for check, marks in _marks(ages.CHECKS, rows):
-        problems += check.problems(marks, rows.row, sheet.name)
-        failing |= marks.failing
+    for age_check in ages.CHECKS:
+        for marks in age_check.mark(rows):
+            problems += age_check.problems(marks, rows.row, sheet.name)
+            failing |= marks.failing
     sound[rows.take[failing]] = False
     wrong = read.placed & ~sound
     spoiled = np.unique(read.place[wrong])
@@ -173,12 +184,6 @@ def _sorted(read: Cells) -> _Sorted:
         unplaced=not read.placed.all(),
         age_totals=_age_totals(read, read.placed & sound & (read.start == TOTAL)),
     )
-
-
-def _marks(
-    checks: Sequence[RowCheck[Subject]], subject: Subject
-) -> Iterable[tuple[RowCheck[Subject], Marks]]:
-    return ((check, marks) for check in checks for marks in check.mark(subject))
 
 
 def _age_totals(read: Cells, rows: Flags) -> list[AgeTotal]:
@@ -198,7 +203,12 @@ def _age_totals(read: Cells, rows: Flags) -> list[AgeTotal]:
 
 
 def _ledger(
-    done: Sequence[_Sorted], codes: tuple[str, ...], areas: Sequence[Area], *, missing_files: bool
+    done: Sequence[_Sorted],
+    codes: tuple[str, ...],
+    areas: Sequence[Area],
+    *,
+    elsewhere: bool,
+    unplaced: bool,
 ) -> Ledger:
     whole = {area.parent for area in areas} - {""}
     return Ledger(
@@ -207,7 +217,8 @@ def _ledger(
         delivered=frozenset(place for place, area in enumerate(areas) if area.delivered),
         blocks=tuple(block for part in done for block in part.blocks),
         spoiled=np.unique(np.concatenate([np.zeros(0, np.int64), *(p.spoiled for p in done)])),
-        unplaced=missing_files or any(part.unplaced for part in done),
+        elsewhere=elsewhere,
+        unplaced=unplaced,
         age_totals=tuple(total for part in done for total in part.age_totals),
     )
 
@@ -217,8 +228,8 @@ def _vectors(ledger: Ledger) -> dict[Key, Vector]:
     found = {}
     for block in ledger.on_common_grids():
         statuses = ["provisional" if mark else "final" for mark in block.provisional.tolist()]
-        for place, status, values in zip(block.place.tolist(), statuses, block.values, strict=True):
-            area, sex, year = parts_of(place)
-            key = Key(ledger.codes[area], sex, str(year), block.measure)
+        names = (part.tolist() for part in parts_of(block.place))
+        for area, sex, year, status, values in zip(*names, statuses, block.values, strict=True):
+            key = Key(ledger.codes[area], SEXES[sex], str(year), block.measure)
             found[key] = Vector(status, block.grid, values)
     return found

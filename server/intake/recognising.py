@@ -66,7 +66,7 @@ _LOOKS = {
     "year": _all(read_year),
     "sex": _all(read_sex),
     "status": _all(read_status),
-    "age": lambda values: _all(read_age)(values) and not _all(_number)(values),
+    "age": _all(lambda value: read_age(value) and not _number(value)),
 }
 
 

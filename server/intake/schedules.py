@@ -114,16 +114,11 @@ def ordered(cells: Cells, sound: Flags) -> Ordered:
 
 def blocks(rows: Ordered, spoiled: Ints) -> Iterator[Block]:
     """Vectors of all places but the spoiled ones, a block for each measure and grid."""
-    if len(spoiled):
-        kept = ~np.isin(rows.place, spoiled)
-        take, place, start, first = (
-            part[kept] for part in (rows.take, rows.place, rows.start, rows.first)
-        )
-    else:
-        take, place, start, first = rows.take, rows.place, rows.start, rows.first
+    kept = ~np.isin(rows.place, spoiled) if len(spoiled) else slice(None)
+    take, place, start = rows.take[kept], rows.place[kept], rows.start[kept]
     if not len(take):
         return
-    sheet, begins = rows.cells.sheet, np.flatnonzero(first)
+    sheet, begins = rows.cells.sheet, np.flatnonzero(rows.first[kept])
     for starts, lines in _grids(start, begins):
         cell = begins[lines][:, None] + np.arange(len(starts))
         taken = take[cell]

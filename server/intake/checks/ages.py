@@ -4,6 +4,7 @@ from collections.abc import Iterator
 
 import numpy as np
 
+from engine.panel import SEXES
 from server.intake.cells import Flags, Ints, parts_of
 from server.intake.checks.check import Marks, RowCheck
 from server.intake.schedules import Ordered
@@ -16,7 +17,7 @@ def _next(rows: Ordered) -> Ints:
 
 def _doubled(rows: Ordered) -> Flags:
     """Rows with the same place and age as the row before."""
-    return ~rows.first & (rows.start == np.roll(rows.start, 1))
+    return np.asarray(~rows.first & (rows.start == np.roll(rows.start, 1)), bool)
 
 
 def _pairs(rows: Ordered) -> Flags:
@@ -46,9 +47,13 @@ def _duplicate(rows: Ordered) -> Iterator[Marks]:
     failing = _doubled(rows)
     if failing.any():
         places, which = np.unique(rows.place[failing], return_inverse=True)
-        parts = [parts_of(int(place)) for place in places]
-        what = np.array([f"{sex} {year}" for _, sex, year in parts], object)[which]
-        yield Marks(_column(rows), failing, {"text": rows.label(failing), "what": what})
+        _, sexes, years = parts_of(places)
+        what = [f"{SEXES[sex]} {year}" for sex, year in zip(sexes, years, strict=True)]
+        yield Marks(
+            _column(rows),
+            failing,
+            {"text": rows.label(failing), "what": np.array(what, object)[which]},
+        )
 
 
 def _pair_marks(rows: Ordered, wrong: Flags) -> Iterator[Marks]:

@@ -6,10 +6,10 @@ from dataclasses import dataclass
 import numpy as np
 
 from engine.ages import Array
-from server.intake.cells import Ints
+from server.intake.cells import YEARS, Flags, Ints, sexes_of
 from server.intake.checks.check import Check
 from server.intake.ledger import Ledger, Line
-from server.intake.problems import Fault
+from server.intake.problems import Fault, Value
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,65 +30,62 @@ def _expected(values: Array, place: Ints) -> Array:
     around = np.full((len(NEIGHBOURS), *values.shape), np.nan)
     lines = np.arange(len(place))
     for number, step in enumerate(NEIGHBOURS):
-        other = lines + step
-        inside = (other >= 0) & (other < len(place))
-        other = np.where(inside, other, lines)
-        near = inside & (place[other] // 10_000 == place // 10_000)
-        near &= np.abs(place[other] - place) <= 2
+        other = np.clip(lines + step, 0, len(place) - 1)
+        apart = np.abs(place[other] - place)  # years, within one area and sex
+        near = (apart > 0) & (apart <= max(NEIGHBOURS))
         around[number, near] = values[other[near]]
     around.sort(axis=0)  # nan last
     count = np.sum(~np.isnan(around[:, :, 0]), axis=0)
-    low = np.maximum(count - 1, 0) // 2
-    high = count // 2
-    middle = (around[np.minimum(low, 3), lines] + around[np.minimum(high, 3), lines]) / 2
+    low, high = (count - 1) // 2, count // 2
+    middle: Array = (around[low, lines] + around[np.minimum(high, len(around) - 1), lines]) / 2
     middle[count < 2] = np.nan
     return middle
 
 
-def _jumps(
-    values: Array, expected: Array, limit: Limit
-) -> "np.ndarray[tuple[int, ...], np.dtype[np.bool_]]":
+def _jumps(values: Array, expected: Array, limit: Limit) -> Flags:
     off = np.abs(values - expected)
-    with np.errstate(invalid="ignore"):
-        return (off > limit.share * expected) & (off > limit.roots * np.sqrt(expected + 1))
+    return np.asarray((off > limit.share * expected) & (off > limit.roots * np.sqrt(expected + 1)))
 
 
-def _of_measure(ledger: Ledger, measure: str) -> Iterator[Fault]:
+def _jumps_of(measure: str, ledger: Ledger) -> Iterator[Fault]:
     """One fault for each area, sex and year: at all ages together, or at the worst age."""
     for block in ledger.of(measure):
-        expected = _expected(block.values, block.place)
-        total = block.values.sum(axis=-1)
-        total_expected = _expected(total[:, None], block.place)[:, 0]
-        all_ages = _jumps(total, total_expected, AT_ALL_AGES[measure])
-        one_age = _jumps(block.values, expected, AT_AN_AGE[measure])
-        for line in np.flatnonzero(all_ages | one_age.any(axis=-1)).tolist():
-            if all_ages[line]:
-                age, label, found, usual = 0, "all ages", total[line], total_expected[line]
-            else:
-                off = np.where(one_age[line], np.abs(block.values[line] - expected[line]), -1)
-                age = int(off.argmax())
-                label, found, usual = (
-                    block.grid.labels[age],
-                    block.values[line, age],
-                    expected[line, age],
-                )
-            values = {"age": label, "found": float(found), "usual": float(round(usual))}
-            place = ledger.named(int(block.place[line]))
-            yield block.fault(block.row[line, age], place | values)
+        ages = np.concatenate([block.values.sum(axis=-1, keepdims=True), block.values], axis=-1)
+        expected = _expected(ages, block.place)
+        jumps = np.concatenate(
+            [
+                _jumps(ages[:, :1], expected[:, :1], AT_ALL_AGES[measure]),
+                _jumps(ages[:, 1:], expected[:, 1:], AT_AN_AGE[measure]),
+            ],
+            axis=-1,
+        )
+        off = np.where(jumps, np.abs(ages - expected), -1.0)
+        off[:, 0] = np.where(jumps[:, 0], np.inf, -1.0)
+        labels = ("all ages", *block.grid.labels)
+        for line in np.flatnonzero(jumps.any(axis=-1)).tolist():
+            age = int(off[line].argmax())
+            values: dict[str, Value] = {
+                "age": labels[age],
+                "found": float(ages[line, age]),
+                "usual": float(round(expected[line, age])),
+            }
+            row = block.row[line, max(age - 1, 0)]
+            yield block.fault(row, ledger.named(int(block.place[line])) | values)
 
 
 def _infants(ledger: Ledger) -> Iterator[Fault]:
     deaths = ledger.lines.get("deaths", {})
     for place, (block, line) in ledger.lines.get("births", {}).items():
-        sexes = [place] if place in deaths else [place - 20_000, place - 10_000]
+        sexes = [place] if place in deaths else sexes_of(place)
         lines = [deaths[at] for at in sexes if at in deaths]
         if len(lines) != len(sexes) or not all(map(_first_year, lines)):
             continue
         infants = sum(float(other.values[at, 0]) for other, at in lines)
         if infants > block.values[line, 0]:
-            values = {"deaths": infants, "births": float(block.values[line, 0])}
             other, at = lines[0]
-            yield other.fault(other.row[at, 0], ledger.named(place) | values)
+            births = float(block.values[line, 0])
+            values = {**ledger.named(place), "deaths": infants, "births": births}
+            yield other.fault(other.row[at, 0], values)
 
 
 def _first_year(line: Line) -> bool:
@@ -107,13 +104,13 @@ def _changing_ages(ledger: Ledger) -> Iterator[Fault]:
     blocks = ledger.of("deaths")
     if len(blocks) < 2:
         return
-    series = np.concatenate([block.place // 10_000 for block in blocks])
+    series = np.concatenate([block.place // YEARS for block in blocks])
     grids = np.concatenate([np.full(len(b.place), n) for n, b in enumerate(blocks)])
     first: dict[int, int] = {}
     for place, grid in sorted(set(zip(series.tolist(), grids.tolist(), strict=True))):
         if first.setdefault(place, grid) != grid and blocks[first[place]].grid != blocks[grid].grid:
             block = blocks[grid]
-            line = int(np.flatnonzero(block.place // 10_000 == place)[0])
+            line = int(np.flatnonzero(block.place // YEARS == place)[0])
             place_values = ledger.named(int(block.place[line]))
             missing = set(blocks[first[place]].grid.starts) ^ set(block.grid.starts)
             ages = ", ".join(str(age) for age in sorted(missing)[:12])
@@ -130,7 +127,7 @@ CHECKS: tuple[Check[Ledger], ...] = (
         found="{found} in {area}, {sex} {year}, age {age}",
         expected="about {usual}, as in the years around it",
         remedy="Compare with the source. If it is right, say so in the note.",
-        find=lambda ledger: _of_measure(ledger, "deaths"),
+        find=lambda ledger: _jumps_of("deaths", ledger),
     ),
     Check(
         key="jump_of_population",
@@ -141,7 +138,7 @@ CHECKS: tuple[Check[Ledger], ...] = (
         found="{found} in {area}, {sex} {year}, age {age}",
         expected="about {usual}, as in the years around it",
         remedy="Compare with the source. If it is right, say so in the note.",
-        find=lambda ledger: _of_measure(ledger, "person_years"),
+        find=lambda ledger: _jumps_of("person_years", ledger),
     ),
     Check(
         key="infant_deaths_exceed_births",

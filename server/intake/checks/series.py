@@ -5,10 +5,11 @@ from collections.abc import Iterator
 
 import numpy as np
 
+from engine.panel import SEXES
 from server.intake.cells import Ints, parts_of
 from server.intake.checks.check import Check, Marks, gathered
 from server.intake.ledger import Ledger
-from server.intake.problems import Fault
+from server.intake.problems import Fault, Value
 
 
 def _missed(ledger: Ledger, here: str, there: str) -> Ints:
@@ -20,15 +21,13 @@ def _missed(ledger: Ledger, here: str, there: str) -> Ints:
 
 def _by_area(ledger: Ledger, places: Ints, measure: str) -> Iterator[Fault]:
     """A fault for each area: which sexes and years."""
-    areas: dict[int, list[int]] = defaultdict(list)
-    for place in places.tolist():
-        areas[parts_of(place)[0]].append(place)
-    for area, missed in areas.items():
-        parts = [parts_of(place) for place in missed]
-        lines = [ledger.lines[measure][place] for place in missed]
+    area_of, sex_of, year_of = parts_of(places)
+    for area in np.unique(area_of).tolist():
+        here = area_of == area
+        lines = [ledger.lines[measure][place] for place in places[here].tolist()]
         rows = np.concatenate([block.row[line] for block, line in lines])
-        years = _years(sorted({year for _, _, year in parts}))
-        sexes = ", ".join(sorted({sex for _, sex, _ in parts}))
+        years = _years(np.unique(year_of[here]).tolist())
+        sexes = ", ".join(SEXES[sex] for sex in np.unique(sex_of[here]))
         values = {"area": ledger.codes[area], "sexes": sexes, "years": years}
         yield lines[0][0].fault(rows, values)
 
@@ -97,9 +96,11 @@ def _years_missing(ledger: Ledger) -> Iterator[Fault]:
     known = np.unique(np.concatenate([ledger.places("deaths"), ledger.spoiled]))
     if ledger.unplaced or len(known) < 2:
         return
-    series, year = np.divmod(known, 10_000)
-    before = np.flatnonzero((series[1:] == series[:-1]) & (year[1:] > year[:-1] + 1))
-    gaps: dict[str, list[dict[str, str | int | float]]] = defaultdict(list)
+    area, sex, year = parts_of(known)
+    before = np.flatnonzero(
+        (area[1:] == area[:-1]) & (sex[1:] == sex[:-1]) & (year[1:] > year[:-1] + 1)
+    )
+    gaps: dict[str, list[dict[str, Value]]] = defaultdict(list)
     for place in before.tolist():
         missing = _years(list(range(int(year[place]) + 1, int(year[place + 1]))))
         gaps[missing].append(ledger.named(int(known[place])))

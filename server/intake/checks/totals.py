@@ -4,6 +4,7 @@ from collections.abc import Iterator
 
 import numpy as np
 
+from server.intake.cells import sexes_of
 from server.intake.checks.check import Check
 from server.intake.ledger import AgeTotal, Ledger, Line, common_grid, summed
 from server.intake.problems import Fault, Value
@@ -25,7 +26,7 @@ def _differs(ledger: Ledger, place: int, measure: str, parts: list[Line]) -> Ite
     if off.max() > _slack(measure, len(parts)):
         age = int(off.argmax())
         row = block.row[line, block.grid.position(grid.starts[age])]
-        values = {
+        values: dict[str, Value] = {
             "age": grid.labels[age],
             "total": float(total[age]),
             "sum": float(parts_sum[age]),
@@ -36,13 +37,13 @@ def _differs(ledger: Ledger, place: int, measure: str, parts: list[Line]) -> Ite
 def _persons(ledger: Ledger) -> Iterator[Fault]:
     for measure in MEASURES.values():
         for place in ledger.both_sexes(measure).tolist():
-            lines = ledger.lines[measure]
-            yield from _differs(
-                ledger, place, measure, [lines[place - 20_000], lines[place - 10_000]]
-            )
+            sexes = [ledger.lines[measure][sex] for sex in sexes_of(place)]
+            yield from _differs(ledger, place, measure, sexes)
 
 
 def _whole(ledger: Ledger) -> Iterator[Fault]:
+    if ledger.elsewhere:
+        return
     for measure in MEASURES.values():
         for place in ledger.wholes(measure):
             parts, missing = ledger.parts(place, measure)
@@ -71,8 +72,8 @@ def _all_ages(ledger: Ledger) -> Iterator[Fault]:
         block, line = found
         ages = float(block.values[line].sum())
         if abs(ages - total.value) > _slack(total.measure, len(block.grid)):
-            values = {"total": total.value, "sum": ages}
-            yield _fault(total, ledger.named(total.place) | values)
+            values = {**ledger.named(total.place), "total": total.value, "sum": ages}
+            yield _fault(total, values)
 
 
 def _only_all_ages(ledger: Ledger) -> Iterator[Fault]:
@@ -103,8 +104,8 @@ CHECKS: tuple[Check[Ledger], ...] = (
         meaning="The whole area as delivered is not the sum of its parts.",
         found="{total} in {area}, {sex} {year}, age {age}",
         expected="{sum}, all parts together",
-        remedy="Find out which is wrong. The sum will be used, unless the whole is declared as "
-        "delivered.",
+        remedy="Find out which is wrong. A whole that is declared as delivered is kept; otherwise "
+        "the sum is used.",
         find=_whole,
     ),
     Check(
