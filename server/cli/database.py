@@ -2,11 +2,11 @@
 
 import argparse
 
+from server.cli.opened import found
 from server.cli.options import Commands, add_command
 from server.config import Config
 from server.sentences.text import _
-from server.store.connect import make_engine
-from server.store.migrating import migrate, schema_state
+from server.store.migrating import migrate
 
 
 def add(commands: Commands) -> None:
@@ -33,11 +33,11 @@ def run(asked: argparse.Namespace, config: Config) -> int:
     if not asked.say:
         print(bring_up(config))
         return 0
-    state = schema_state(make_engine(config.url))
+    state, place = found(config)
     sentences = {
-        "head": _("The database at {url} is up to date.", url=config.url),
-        "behind": _("The database at {url} was made by another version.", url=config.url),
-        "empty": _("There is no database yet at {url}.", url=config.url),
+        "head": _("The database at {url} is up to date.", url=place),
+        "behind": _("The database at {url} was made by another version.", url=place),
+        "empty": _("There is no database yet at {url}.", url=place),
     }
     print(sentences[state])
     return 0 if state == "head" else 1
@@ -45,13 +45,11 @@ def run(asked: argparse.Namespace, config: Config) -> int:
 
 def bring_up(config: Config) -> str:
     """Make or migrate; the sentence that says what was done."""
-    if not config.database_url:
-        config.data.mkdir(parents=True, exist_ok=True)
-    state = schema_state(make_engine(config.url))
+    state, place = found(config)
     if state != "head":
         migrate(config.url)
     return {
-        "head": _("The database at {url} is up to date.", url=config.url),
-        "behind": _("The database at {url} was brought up to date.", url=config.url),
-        "empty": _("The database was made at {url}.", url=config.url),
+        "head": _("The database at {url} is up to date.", url=place),
+        "behind": _("The database at {url} was brought up to date.", url=place),
+        "empty": _("The database was made at {url}.", url=place),
     }[state]

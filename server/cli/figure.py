@@ -92,7 +92,7 @@ def _twin(known: Heading, found: list[Series]) -> Twin:
             collection=collection.name,
             number=edition.number,
         ),
-        address=address(collection.code, edition.number, found[0].question),
+        address=" ".join(address(collection.code, edition.number, one.question) for one in found),
         about=((_("Settings"), found[0].settings.key), (_("Content"), edition.digest)),
         notices=(),
         cautions=(),

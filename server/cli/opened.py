@@ -10,12 +10,20 @@ from server.store.connect import Session, make_engine, sessions
 from server.store.migrating import schema_state
 
 
+def found(config: Config) -> tuple[str, str]:
+    """State of the schema (head, behind, empty), and where it is, without a password."""
+    engine = make_engine(config.url)
+    state, place = schema_state(engine), str(engine.url)
+    engine.dispose()
+    return state, place
+
+
 def require_head(config: Config) -> None:
     """Refuse where the database is not in the shape this version needs."""
-    state = schema_state(make_engine(config.url))
+    state, place = found(config)
     if state == "empty":
         raise Declined(
-            _("There is no database yet at {url}. Make it: ebbline database", url=config.url),
+            _("There is no database yet at {url}. Make it: ebbline database", url=place),
             exit_code=1,
         )
     if state != "head":
@@ -23,7 +31,7 @@ def require_head(config: Config) -> None:
             _(
                 "The database at {url} was made by another version. Bring it up to date: ebbline "
                 "database",
-                url=config.url,
+                url=place,
             ),
             exit_code=1,
         )
@@ -33,5 +41,7 @@ def require_head(config: Config) -> None:
 def opened(config: Config) -> Iterator[Session]:
     """A session on the database, which must be up to date."""
     require_head(config)
-    with sessions(make_engine(config.url))() as session:
+    engine = make_engine(config.url)
+    with sessions(engine)() as session:
         yield session
+    engine.dispose()

@@ -2,11 +2,12 @@
 
 import argparse
 from collections.abc import Callable, Sequence
+from typing import TypeAlias
 
 from server.config import Config
 from server.sentences.text import _
 
-Commands = argparse._SubParsersAction[argparse.ArgumentParser]
+Commands: TypeAlias = "argparse._SubParsersAction[argparse.ArgumentParser]"
 Run = Callable[[argparse.Namespace, Config], int]
 
 

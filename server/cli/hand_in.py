@@ -1,0 +1,126 @@
+"""`ebbline hand-in`: from files to an edition in one go, or to the list of what is wrong."""
+
+import argparse
+import datetime as dt
+import sys
+
+from server.accounts.viewer import LOCAL
+from server.actions.check_upload import check_upload
+from server.actions.commit_upload import commit_upload
+from server.actions.create_collection import create_collection
+from server.actions.map_upload import map_upload
+from server.actions.receive_upload import receive_upload
+from server.cli import reading
+from server.cli.opened import opened
+from server.cli.options import Commands, add_command, add_note
+from server.cli.refusals import Declined
+from server.config import Config
+from server.intake.parsing import Handed, parse
+from server.intake.report import Report
+from server.sentences import uploads as say
+from server.sentences.numbers import whole
+from server.sentences.text import _
+from server.store import collections, editions
+from server.store.connect import Session
+from server.store.records import Basis
+
+
+def add(commands: Commands) -> None:
+    command = add_command(
+        commands,
+        "hand-in",
+        run,
+        summary=_("check files and make an edition of them"),
+        text=_(
+            "Reads CSV files of deaths and population (births if you have them), finds out which "
+            "column is which, runs every check, and makes the next edition of the collection. "
+            "With errors it prints them all, writes nothing and ends with code 2. The basis must "
+            "be stated for a new collection; later editions take it over unless told otherwise."
+        ),
+        examples=(
+            "ebbline hand-in --check-only --counts counts.csv --area isle=Isle --open-age",
+            "ebbline hand-in --collection isle --name 'Isle, all deaths' --owner 'Our desk' \\",
+            "    --deaths deaths.csv --population population.csv --whole isle=Isle \\",
+            "    --people residents --dated-by death --population-is midyear \\",
+            "    --population-date '1 July of each year' --source 'civil register' \\",
+            "    --note '1999 to 2023, first delivery'",
+            "ebbline hand-in --collection isle --counts 2024.csv --provisional 2024",
+        ),
+    )
+    command.add_argument("--collection", metavar="CODE", help=_("code of the collection"))
+    command.add_argument("--name", metavar=_("NAME"), help=_("opens a new collection of this name"))
+    command.add_argument("--owner", metavar=_("OFFICE"), help=_("data owner of a new collection"))
+    command.add_argument("--check-only", action="store_true", help=_("check and write nothing"))
+    add_note(command)
+    reading.add_files(command)
+    reading.add_mapping(command)
+    reading.add_basis(command)
+
+
+def run(asked: argparse.Namespace, config: Config) -> int:
+    files = reading.handed(asked, limit=config.upload_limit)
+    report = Report.of(parse(files))
+    for problem in report.problems:
+        print(problem.sentence(_, whole))
+    print(say.outcome(len(report.errors), len(report.warnings), report.rows, report.sound))
+    if report.errors:
+        print(_("Nothing was written."), file=sys.stderr)
+        return 2
+    if asked.check_only:
+        return 0
+    if not asked.collection:
+        raise Declined(_("Say which collection the edition is for: --collection CODE"))
+    with opened(config) as session:
+        return _commit(session, asked, files, limit=config.upload_limit)
+
+
+def _commit(session: Session, asked: argparse.Namespace, files: list[Handed], *, limit: int) -> int:
+    now = dt.datetime.now(dt.UTC)
+    if not any(one.code == asked.collection for one in collections.all_collections(session)):
+        basis = reading.basis(asked, None)
+        _open(session, asked, now)
+    else:
+        basis = reading.basis(asked, _standing_basis(session, asked.collection))
+    upload = receive_upload(
+        session,
+        collection=asked.collection,
+        files=[(file.role, file.name, file.content) for file in files],
+        by=LOCAL,
+        now=now,
+        limit=limit,
+    )
+    mappings = {file.role: file.mapping for file in files}
+    map_upload(session, upload_id=upload.id, mappings=mappings, basis=basis, by=LOCAL, now=now)
+    check_upload(session, upload_id=upload.id)
+    edition = commit_upload(session, upload_id=upload.id, note=asked.note, by=LOCAL, now=now)
+    print(
+        _(
+            "Edition {number} of {collection} was made; content {digest}.",
+            number=edition.number,
+            collection=asked.collection,
+            digest=edition.digest[:12],
+        )
+    )
+    return 0
+
+
+def _open(session: Session, asked: argparse.Namespace, now: dt.datetime) -> None:
+    """Open the collection that --name and --owner describe."""
+    if not asked.name or not asked.owner:
+        known = [one.code for one in collections.all_collections(session)]
+        raise Declined(
+            _(
+                "There is no collection {code}; there are: {known}. Correct the code, or give "
+                "--name and --owner to open it.",
+                code=asked.collection,
+                known=", ".join(known) or _("none"),
+            )
+        )
+    create_collection(
+        session, code=asked.collection, name=asked.name, owner=asked.owner, by=LOCAL, now=now
+    )
+
+
+def _standing_basis(session: Session, code: str) -> Basis | None:
+    standing = editions.newest_standing(session, code)
+    return standing.basis if standing else None
