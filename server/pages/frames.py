@@ -104,7 +104,7 @@ def twins(heading: Heading, question: Question) -> dict[str, str]:
 def source(heading: Heading) -> str:
     """The source line of a chart."""
     return _(
-        "{source}; edition {number}",
+        "Source: {source}; edition {number}",
         source=heading.edition.basis.source,
         number=heading.edition.number,
     )

@@ -21,7 +21,7 @@ from server.results.questions import (
 )
 from server.sentences import basis, names
 from server.sentences import population_year as say
-from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.pieces import Piece, Sentence
 from server.sentences.reasons import reason
 from server.sentences.standing import Headline
 from server.sentences.text import _
@@ -51,7 +51,8 @@ class PopulationYearPage(Page):
 
     template: ClassVar[str] = "population-year/page.html"
     drawn: frozenset[str]  # keys of the pictures there are
-    rows: str  # what the folded life table holds
+    about_table: Sentence
+    rows: str  # summary of the folded life table
     computed: tuple[Sentence, ...]
     basis: tuple[Sentence, ...]
     further: tuple[Sentence, ...]
@@ -78,6 +79,7 @@ def build(
         cautions=_cautions(found),
         twins=frames.twins(heading, question),
         drawn=frozenset(chart.key for chart in charts),
+        about_table=say.about_table(found.chain.table.grid.open_age, modelled=found.chain.modelled),
         rows=_rows(found),
         computed=basis.computed(found.settings),
         basis=frames.basis(heading.edition.basis),
@@ -114,7 +116,7 @@ def _frame(found: Findings) -> Frame:
         heading,
         found.question,
         title=_("{who}, {year}", who=names.population_first(of.sex, found.name), year=of.period),
-        place=phrase(_("{who} in {year}"), who=who, year=of.period),
+        place=(Piece(_("{who} in {year}", who=who, year=of.period), "#further"),),
         figures=found.question.figures,
         settings=found.question.settings,
         notices=frames.notices(heading, found.question, found.moved, headline),
@@ -215,7 +217,7 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
         settings=asked.settings,
     )
     years = Piece(
-        _("life expectancy from {first} to {last}", first=trend.first, last=trend.last),
+        _("Life expectancy from {first} to {last}", first=trend.first, last=trend.last),
         address(heading.collection.code, heading.edition.number, trend),
     )
     return basis.further(tuple(links), years)

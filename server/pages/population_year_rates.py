@@ -50,7 +50,7 @@ def rates(found: Findings, source: str) -> Chart | None:
                 at=At(float(grid.mids[beyond[-1]]), float(per_thousand[beyond[-1]]), "right", -8),
             )
         )
-    shown = log_ticks(low / 2, high * 1.5)
+    shown = log_ticks(low / 2.5, high * 1.5)
     gaps = bool(np.any(table.mx[:closed] == 0))
     return Chart(
         key="rates",
@@ -67,14 +67,14 @@ def rates(found: Findings, source: str) -> Chart | None:
         x_kind="age",
         x_range=axis(found),
         y_title=_("per 1,000, ratio scale"),
-        y_range=(low / 2, high * 1.5),
+        y_range=(low / 2.5, high * 1.5),
         y_ticks=shown,
         y_text=tuple(f"{at:,g}" for at in shown),
         y_log=True,
         hover=_("age %{customdata}: %{y:,.2f} per 1,000"),
         table="life",
         series=tuple(series),
-        notes=(Note(_("gaps: no deaths at that age"), At(16, low / 1.5)),) if gaps else (),
+        notes=(Note(_("gaps: no deaths at that age"), At(16, low / 1.6)),) if gaps else (),
     )
 
 
@@ -142,6 +142,7 @@ def gain(found: Findings, source: str) -> Chart | None:
     grid, days = found.loaded.panel.grid, DAYS * found.gain
     density = days[:-1] / grid.widths[:-1]
     highest = float(density.max())
+    shown = ticks(0, 1.2 * highest)
     span, share = _most(grid, days)
     unit = (
         _(
@@ -174,14 +175,14 @@ def gain(found: Findings, source: str) -> Chart | None:
         x_range=axis(found),
         y_title=_("days"),
         y_range=(0, 1.2 * highest),
-        y_ticks=ticks(0, 1.2 * highest),
+        y_ticks=shown,
         hover=_("age %{customdata}: %{y:.2f} days"),
         table="gain",
         series=(bars(grid, density, range(len(density)), who(found)),),
         notes=(
             Note(
                 _("all ages together: {days} days", days=number(float(days.sum()), 1)),
-                At(24, 0.85 * highest, narrow_x=6),
+                At(24, shown[-1] - shown[1] / 2, narrow_x=6),  # between two guides
             ),
         ),
     )

@@ -151,6 +151,22 @@ def not_read(
     )
 
 
+def about_table(open_age: int, *, modelled: bool) -> Sentence:
+    """What the life table holds and what it stands behind."""
+    text = (
+        _(
+            "Ages from 0 to {age} and over, the highest from a fitted law; rows in fives. It is the"
+            " table behind the pictures above."
+        )
+        if modelled
+        else _(
+            "Ages from 0 to {age} and over, rows in fives. It is the table behind the pictures"
+            " above."
+        )
+    )
+    return phrase(text, age=str(open_age))
+
+
 def table_rows(who: str, period: str, rows: int) -> str:
     """The summary of the folded life table."""
     return _("Life table of {who}, {year} ({rows} rows)", who=who, year=period, rows=rows)
