@@ -64,8 +64,9 @@ class Ledger:
     def places(self, measure: str) -> Ints:
         """All places that have the measure, in order."""
         none = np.zeros(0, np.int64)
-        places = np.concatenate([none, *(block.place for block in self.of(measure))])
-        return np.asarray(np.sort(places), np.int64)
+        places: Ints = np.concatenate([none, *(block.place for block in self.of(measure))])
+        places.sort()
+        return places
 
     def named(self, place: int) -> dict[str, Value]:
         """Area, sex and year of a place, as values of a fault."""
@@ -75,9 +76,10 @@ class Ledger:
     def both_sexes(self, measure: str) -> Ints:
         """Places of persons where women and men have the measure too."""
         places = self.places(measure)
-        persons = places[parts_of(places)[1] == SEXES.index("p")]
+        persons: Ints = places[parts_of(places)[1] == SEXES.index("p")]
         women, men = sexes_of(persons)
-        return persons[np.isin(women, places) & np.isin(men, places)]
+        both: Ints = persons[np.isin(women, places) & np.isin(men, places)]
+        return both
 
     def parts(self, place: int, measure: str) -> tuple[list[Line], list[str]]:
         """Lines of the parts at a place of the whole, and codes of the parts that have none."""
@@ -97,7 +99,7 @@ class Ledger:
     def wholes(self, measure: str) -> list[int]:
         """Places of the whole that have the measure."""
         places = self.places(measure)
-        return places[parts_of(places)[0] == self.whole].tolist()
+        return [int(place) for place in places[parts_of(places)[0] == self.whole]]
 
     def without_totals(self) -> "Ledger":
         """Without what is summed anyway: persons beside both sexes, the whole beside all parts."""

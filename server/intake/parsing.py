@@ -20,6 +20,7 @@ from server.intake.cells import (
     whole_code,
 )
 from server.intake.checks import ages, columns, fields, files, plausibility, series, totals
+from server.intake.checks import areas as area_checks
 from server.intake.layout import layout
 from server.intake.ledger import AgeTotal, Ledger
 from server.intake.mapping import ROLES, Mapping
@@ -144,13 +145,13 @@ def _areas(
         )
         for code in sorted(found)
     )
-    said = columns.Said(
+    said = area_checks.Said(
         names={code: tuple(given) for code, given in names.items()},
         wholes=tuple(dict.fromkeys(filter(None, (whole_code(f.mapping) for f in handed)))),
         codes=tuple(sorted(found)),
         delivered=tuple(sorted(delivered)),
     )
-    problems = [problem for check in columns.AREA_CHECKS for problem in check.problems(said)]
+    problems = [problem for check in area_checks.CHECKS for problem in check.problems(said)]
     return tuple(sorted(found)), areas, problems if sheets else []
 
 
