@@ -117,7 +117,8 @@ FAMILY = (
             "The age above 10 at which most people would die if the death rates of the year held"
             " for all their lives, read off a smooth curve through the death rates of the closed"
             " age groups from 10. Each group stands at its middle, which in groups of five years"
-            " moves the age by about a tenth of a year."
+            " moves the age by one or two tenths of a year. Its interval takes the smoothing as"
+            " given."
         ),
         formula=(
             "the x with the greatest l(x) mu(x); log mu(x) a cubic B-spline with a knot every five"

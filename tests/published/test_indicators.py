@@ -1,0 +1,158 @@
+"""Indicators against values computed elsewhere, and against laws whose values are known exactly."""
+
+import json
+from dataclasses import replace
+
+import numpy as np
+import pytest
+from scipy.special import exp1
+
+from engine.ages import AgeGrid, Array
+from engine.chain import run
+from engine.indicators import INDICATORS, estimate
+from engine.panel import Panel
+from engine.settings import SETTINGS
+from engine.streams import poisson_draws
+from engine.tables import LifeTable, from_lx, from_rates
+from tests.published import denmark
+
+SETTINGS_1 = SETTINGS["almanac-1"]
+LAWS = json.loads((denmark.HERE / "closed_forms.json").read_text(encoding="utf-8"))
+COLUMNS = {
+    "e0": "e0",
+    "e65": "e65",
+    "median": "median",
+    "mode_raw": "mode_raw",
+    "mode_parabola": "mode_kannisto",
+    "edagger": "edagger_A",
+    "H": "H_A",
+    "45q15": "q45_15",
+}
+
+
+@pytest.mark.parametrize("sex", denmark.SEXES)
+@pytest.mark.parametrize(("key", "column"), COLUMNS.items())
+def test_denmark(sex: str, key: str, column: str) -> None:
+    """Eight digits are printed; all years of a sex in one call."""
+    got = estimate(INDICATORS[key], denmark.panel(sex), SETTINGS_1)
+    np.testing.assert_allclose(got.value, denmark.summary(sex, column), rtol=1e-6)
+
+
+@pytest.mark.parametrize("sex", denmark.SEXES)
+def test_denmarks_smooth_mode_is_near_the_parabolas_and_jumps_less(sex: str) -> None:
+    """No smooth mode is printed; over 39 years it must follow the parabola's with less noise."""
+    smooth = INDICATORS["mode"].value(run(denmark.panel(sex), SETTINGS_1))
+    parabola = denmark.summary(sex, "mode_kannisto")
+    assert abs(np.mean(smooth - parabola)) < 0.4
+    assert np.abs(np.diff(smooth)).mean() < 0.75 * np.abs(np.diff(parabola)).mean()
+
+
+def simulated() -> list[tuple[str, int, float]]:
+    return [
+        (row["sex"], int(row["year"]), float(row["mc_sd_e0"]))
+        for row in denmark.rows("denmark_e0_simulated.csv")
+    ]
+
+
+@pytest.mark.parametrize(("sex", "year", "spread"), simulated())
+def test_denmarks_e0_spreads_as_simulated_elsewhere(sex: str, year: int, spread: float) -> None:
+    panel = denmark.one(sex, year)
+    e0 = INDICATORS["e0"]
+    got = estimate(e0, panel, SETTINGS_1)
+    assert (got.high - got.low) / (2 * 1.959963985) == pytest.approx(spread, rel=0.02)
+    deaths = poisson_draws(panel.deaths, np.array(f"{sex}.{year}"), 4000, "test")
+    own = replace(
+        panel,
+        deaths=deaths,
+        exposure=np.broadcast_to(panel.exposure, deaths.shape),
+        infant_weight=np.broadcast_to(panel.infant_weight, (4000, 2)),
+        infant_ratio=np.broadcast_to(panel.infant_ratio, (4000, 2)),
+    )
+    assert e0.value(run(own, SETTINGS_1)).std() == pytest.approx(spread, rel=0.04)
+
+
+def read(key: str, table: LifeTable) -> float:
+    """An indicator of a table that no panel gave."""
+    grid = table.grid
+    panel = Panel.of(grid, np.ones(len(grid)), np.ones(len(grid)), sex="f")
+    return float(INDICATORS[key].value(replace(run(panel, SETTINGS_1), table=table)))
+
+
+def law_of(name: str, **near: float) -> dict[str, float]:
+    """Exact values of the entry of this name whose parameters are these."""
+    return next(
+        entry["exact"]
+        for entry in LAWS
+        if entry["name"] == name and near.items() <= entry["params"].items()
+    )
+
+
+def gompertz_table(level: float, slope: float) -> LifeTable:
+    """Single years to 109 of a Gompertz law: l(x) exact, a(x) from its integral."""
+    ages = np.arange(110.0)
+    cumulated = lambda x: level / slope * np.expm1(slope * x)  # noqa: E731
+    inner, weight = np.polynomial.legendre.leggauss(16)
+    inside = ages[:-1, None] + (inner + 1) / 2
+    lx = np.exp(-cumulated(ages))
+    years = (np.exp(-cumulated(inside)) * weight / 2).sum(axis=-1)
+    ax = (years - lx[1:]) / (lx[:-1] - lx[1:])
+    z = level / slope * np.exp(slope * ages[-1])
+    last = np.exp(z) * exp1(z) / slope
+    return from_lx(AgeGrid(tuple(range(110))), lx, np.append(ax, last))
+
+
+@pytest.mark.parametrize("ends", [20, 60, 100])
+def test_at_a_constant_hazard_all_is_lost_with_every_death(ends: int) -> None:
+    exact = law_of("constant hazard")
+    hazard = 1 / exact["e0"]
+    grid = AgeGrid((0, 1, *range(5, ends + 1, 5)))
+    n: Array = grid.widths
+    n[-1] = 1.0
+    ax = 1 / hazard - n / np.expm1(hazard * n)
+    ax[-1] = 1 / hazard
+    table = from_rates(grid, np.full(len(grid), hazard), ax)
+    assert read("e0", table) == pytest.approx(exact["e0"], rel=1e-12)
+    assert read("edagger", table) == pytest.approx(exact["edagger"], rel=1e-12)
+    assert read("H", table) == pytest.approx(exact["H"], rel=1e-12)
+
+
+@pytest.mark.parametrize("starts", [tuple(range(101)), (0, 1, *range(5, 101, 5))])
+def test_where_survivors_fall_on_a_line_half_of_life_is_lost(starts: tuple[int, ...]) -> None:
+    exact = law_of("de Moivre (linear l(x))")
+    middles = np.append(np.diff(starts) / 2, 1e-14)  # nobody reaches 100, where no life is left
+    table = from_lx(AgeGrid(starts), 1 - np.array(starts) / 100, middles)
+    for key in ("e0", "edagger", "H", "median"):
+        assert read(key, table) == pytest.approx(exact[key], rel=1e-12)
+
+
+@pytest.mark.parametrize(("level", "slope"), [(5e-5, 0.095), (2e-5, 0.105)])
+def test_a_gompertz_law(level: float, slope: float) -> None:
+    exact = law_of("Gompertz", a=level, b=slope)
+    table = gompertz_table(level, slope)
+    assert read("e0", table) == pytest.approx(exact["e0"], abs=1e-8)
+    # the sum takes e(x) as straight within a year of age
+    assert read("edagger", table) == pytest.approx(exact["edagger"], rel=2e-4)
+    assert read("H", table) == pytest.approx(exact["H"], rel=2e-4)
+    assert read("median", table) == pytest.approx(exact["median"], abs=0.01)
+    assert read("mode_raw", table) == np.floor(exact["mode"])
+    assert read("mode_parabola", table) == pytest.approx(exact["mode"], abs=0.03)
+
+
+@pytest.mark.parametrize("width", [1, 5])
+@pytest.mark.parametrize(("level", "slope"), [(5e-5, 0.095), (2e-5, 0.105)])
+def test_the_smooth_mode_and_the_ageing_rate_of_a_gompertz_law(
+    level: float, slope: float, width: int
+) -> None:
+    """Counts of a stationary population under the law, exact within each group."""
+    exact = law_of("Gompertz", a=level, b=slope)
+    table = gompertz_table(level, slope)
+    starts = (0, *range(width, 101, width))
+    first = np.array(starts)
+    grid = AgeGrid(starts)
+    deaths, years = (1e6 * np.add.reduceat(column, first) for column in (table.dx, table.Lx))
+    chain = run(Panel.of(grid, deaths, years, sex="f"), SETTINGS_1)
+    # rates stand at the middle of their group
+    mode = INDICATORS["mode"].value(chain)
+    assert mode == pytest.approx(exact["mode"], abs=0.006 if width == 1 else 0.2)
+    rate = INDICATORS["ageing_rate"].value(chain)
+    assert rate == pytest.approx(exact["LAR"], rel=0.001 if width == 1 else 0.02)
