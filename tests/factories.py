@@ -9,8 +9,13 @@ from numpy.typing import ArrayLike, NDArray
 
 from engine.ages import AgeGrid, Array
 from engine.panel import Panel
+from server.accounts.viewer import LOCAL
 from server.actions import totals
-from server.store import areas, collections, editions, records, schedules
+from server.actions.check_upload import check_upload
+from server.actions.map_upload import map_upload
+from server.actions.receive_upload import receive_upload
+from server.intake import mapping as intake
+from server.store import areas, collections, editions, records, schedules, uploads
 from server.store.connect import Session, transaction
 from server.store.records import Area, Basis, Change, Edition, Key, Vector
 
@@ -198,3 +203,45 @@ def withdrawn(session: Session, number: int, collection: str = "saltmarsh") -> E
         return editions.record_event(
             session, collection, number, "withdrawn", by="a tester", note="wrong", at=NOON
         )
+
+
+# ---- intake: a file as somebody would hand it in -------------------------------------------------
+
+COLUMNS = intake.Mapping(
+    year="year", sex="sex", age="age", area="area", deaths="deaths", population="population"
+)
+
+
+def counts_csv(
+    areas: Iterable[str] = ("north", "south"),
+    *,
+    years: Iterable[int] = (2001, 2002),
+    sexes: Iterable[str] = "fm",
+    times: int = 1,
+) -> bytes:
+    """Deaths and population in long form; no two rows have the same counts."""
+    lines = ["year,sex,age,area,deaths,population"]
+    for area in areas:
+        for year in years:
+            for sex in sexes:
+                for age in ("0", "1-4", "5-9", "10+"):
+                    row = len(lines)
+                    lines.append(f"{year},{sex},{age},{area},{times * (20 + row)},{9000 + 7 * row}")
+    return "\n".join(lines).encode()
+
+
+def checked_upload(
+    session: Session,
+    content: bytes,
+    *,
+    mapping: intake.Mapping = COLUMNS,
+    collection: str = "saltmarsh",
+    basis: Basis = BASIS,
+) -> records.Upload:
+    """A draft that was received, mapped and checked."""
+    files = [("counts", "counts.csv", content)]
+    upload = receive_upload(session, collection=collection, files=files, by=LOCAL, now=NOON)
+    mappings = {"counts": mapping}
+    map_upload(session, upload_id=upload.id, mappings=mappings, basis=basis, by=LOCAL, now=NOON)
+    check_upload(session, upload_id=upload.id)
+    return uploads.find(session, upload.id)

@@ -6,8 +6,8 @@ from dataclasses import dataclass
 
 from server.accounts.viewer import Right, Viewer
 from server.actions import totals
-from server.intake.mapping import Mapping
-from server.intake.parsing import READER, Handed, Parsed, parse
+from server.actions.check_upload import handed
+from server.intake.parsing import READER, Parsed, parse
 from server.intake.problems import Problem
 from server.intake.report import Report
 from server.store import areas, editions, schedules, uploads
@@ -75,25 +75,15 @@ def require_sound(upload: Upload) -> Sound:
             "basis and run the checks.",
             upload=upload.id,
         )
-    problems = Report.from_json(upload.report).problems
-    _require_no_errors(upload, problems)
-    return Sound(upload, upload.basis, upload.base, warnings=len(problems))
+    report = Report.from_json(upload.report)
+    _require_no_errors(upload, report.errors)
+    return Sound(upload, upload.basis, upload.base, warnings=len(report.warnings))
 
 
 def read(session: Session, upload: Upload) -> Parsed:
     """The kept bytes, read again with the kept mapping. Raises: Refused where they have errors."""
-    parsed = parse(
-        [
-            Handed(
-                file.role,
-                file.name,
-                uploads.file_bytes(session, upload.id, file.role),
-                Mapping.from_json(file.mapping),
-            )
-            for file in upload.files
-        ]
-    )
-    _require_no_errors(upload, parsed.problems)
+    parsed = parse(handed(session, upload))
+    _require_no_errors(upload, parsed.errors)
     return parsed
 
 
@@ -119,8 +109,7 @@ def _change(session: Session, sound: Sound, parsed: Parsed, *, replace: bool) ->
     )
 
 
-def _require_no_errors(upload: Upload, problems: Sequence[Problem]) -> None:
-    errors = [problem for problem in problems if problem.severity == "error"]
+def _require_no_errors(upload: Upload, errors: Sequence[Problem]) -> None:
     if errors:
         raise Refused(
             "Upload {upload} has {count} errors and cannot become an edition. The first: {first} "
