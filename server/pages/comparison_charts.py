@@ -138,7 +138,7 @@ def unevenness(found: Comparison, source: str) -> Chart | None:
         ),
         unit=_(
             "Contribution of each age group to the difference in relative unevenness (H),"
-            " thousandths, with {level} % intervals; hatched bars lower it",
+            " thousandths, with {level} % intervals; hatched bars work against the rest",
             level=round(100 * found.settings.level),
         ),
         title=_("thousandths of H"),

@@ -1,7 +1,7 @@
 """One indicator through the years, for chosen areas and sexes: the trend's numbers."""
 
 from dataclasses import dataclass
-from typing import TypeVar
+from typing import NamedTuple, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,6 +16,7 @@ from engine.settings import Settings
 from server.results.estimating import stream
 from server.results.loading import Holdings, Loaded, NotInEdition, holdings, load
 from server.results.questions import PopulationYear, TrendQuestion
+from server.results.revision import Moved, moved
 from server.sentences.numbers import whole
 from server.sentences.text import _
 from server.store.connect import Session
@@ -47,10 +48,15 @@ class Series:
     open_ages: tuple[tuple[int | None, ...], ...]  # [line][period]: where the table ends
     ends: tuple[tuple[str, str] | None, ...]  # [line]: first and last year with a value
     change: Estimate  # [line]: value at the last of `ends` less that at the first
+    middle: tuple[str, ...]  # [line]: the year with a value in the middle of them; "" where none
+    earlier: Estimate  # [line]: the change up to the middle year
+    later: Estimate  # [line]: the change from it on
+    moved: Moved | None  # the first line's last figure in a newer edition
 
 
 def series(session: Session, heading: Heading, question: TrendQuestion) -> Series:
-    """All lines and years of a completed question: two statements, one engine call a grid.
+    """All lines and years of a completed question: three statements, one engine call a grid; two
+    more statements where a newer edition stands.
 
     Raises: NotInEdition where nothing asked for is held; TooLarge.
     """
@@ -65,6 +71,8 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
         np.arange(len(wanted)).reshape(len(lines), len(periods))
     ]
     ends = tuple(_ends(row, periods) for row in estimate.value)
+    middle = tuple(_middle(row, periods) for row in estimate.value)
+    spans = _spans(ends, middle)
     found = [loaded.get(one) for one in wanted]
     return Series(
         heading=heading,
@@ -78,7 +86,11 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
         status=_rows([one.status if one else "" for one in found], len(periods)),
         open_ages=_rows([one.panel.grid.open_age if one else None for one in found], len(periods)),
         ends=ends,
-        change=_changes(collection, lines, ends, loaded, indicator, settings),
+        middle=middle,
+        change=_changes(collection, lines, spans.whole, loaded, indicator, settings),
+        earlier=_changes(collection, lines, spans.earlier, loaded, indicator, settings),
+        later=_changes(collection, lines, spans.later, loaded, indicator, settings),
+        moved=_moved(session, heading, lines[0], ends[0], indicator, settings),
     )
 
 
@@ -149,6 +161,50 @@ def _ends(values: NDArray[np.float64], periods: tuple[str, ...]) -> tuple[str, s
     return periods[known[0]], periods[known[-1]]
 
 
+def _moved(
+    session: Session,
+    heading: Heading,
+    line: tuple[str, str],
+    ends: tuple[str, str] | None,
+    indicator: Indicator,
+    settings: Settings,
+) -> Moved | None:
+    if ends is None:
+        return None
+    one = PopulationYear(*line, ends[1])
+    return moved(
+        session,
+        heading,
+        [one],
+        lambda newer: float(indicators.estimate(indicator, newer[one].panel, settings).value),
+    )
+
+
+def _middle(values: NDArray[np.float64], periods: tuple[str, ...]) -> str:
+    known = np.flatnonzero(np.isfinite(values))
+    if len(known) < 5:  # fewer years have no halves worth telling apart
+        return ""
+    centre = (known[0] + known[-1]) / 2
+    return periods[int(known[np.argmin(np.abs(known - centre))])]
+
+
+class _Spans(NamedTuple):
+    """First and last year of each line's whole run and of its halves, [line]; None where none."""
+
+    whole: tuple[tuple[str, str] | None, ...]
+    earlier: tuple[tuple[str, str] | None, ...]
+    later: tuple[tuple[str, str] | None, ...]
+
+
+def _spans(ends: tuple[tuple[str, str] | None, ...], middle: tuple[str, ...]) -> _Spans:
+    pairs = list(zip(ends, middle, strict=True))
+    return _Spans(
+        ends,
+        tuple((end[0], turn) if end and turn else None for end, turn in pairs),
+        tuple((turn, end[1]) if end and turn else None for end, turn in pairs),
+    )
+
+
 def _changes(
     collection: str,
     lines: tuple[tuple[str, str], ...],
@@ -157,7 +213,7 @@ def _changes(
     indicator: Indicator,
     settings: Settings,
 ) -> Estimate:
-    """The last year with a value less the first, [line], each pair on the grid it shares."""
+    """The last year of a span less the first, [line], each pair on the grid it shares."""
     gap = np.full(len(lines), np.nan)
     out = Estimate(gap, gap.copy(), gap.copy(), np.full(len(lines), Reason.NOT_AVAILABLE, np.uint8))
     for index, (line, pair) in enumerate(zip(lines, ends, strict=True)):

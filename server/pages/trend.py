@@ -1,0 +1,165 @@
+"""Which way is it going? One indicator through the years, for chosen areas and sexes."""
+
+from dataclasses import dataclass
+from typing import ClassVar
+
+import numpy as np
+
+from engine.estimates import Reason
+from engine.indicators import INDICATORS
+from server.pages import frames, trend_chart
+from server.pages import trend_tables as tables
+from server.pages.choices import Offer, Options, offer
+from server.pages.page import Caution, Page
+from server.results.questions import TrendQuestion
+from server.results.series import Series, series
+from server.sentences import basis, names
+from server.sentences import trend as say
+from server.sentences.pieces import Sentence, phrase
+from server.sentences.reasons import reason
+from server.sentences.standing import Headline
+from server.sentences.text import _
+from server.store.connect import Session
+from server.store.heading import Heading
+
+SAID = 5  # lines beside the first that the lead speaks of
+
+
+@dataclass(frozen=True, slots=True)
+class Choice:
+    """The form above the picture: what there is, and what is chosen."""
+
+    action: str
+    offer: Offer
+    indicators: Options
+    asked: TrendQuestion
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class TrendPage(Page):
+    """One indicator through time."""
+
+    template: ClassVar[str] = "trend/page.html"
+    drawn: bool
+    choice: Choice
+    computed: tuple[Sentence, ...]
+    basis: tuple[Sentence, ...]
+
+
+def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendPage:
+    found = series(session, heading, question)
+    label = _(found.indicator.label)
+    courses = [course(found, line) for line in range(len(found.lines))]
+    told = [one for one in courses if one is not None]
+    area, sex = found.lines[0]
+    chart = trend_chart.draw(found, say.finding(label, told), frames.source(heading))
+    lead = (say.halves(courses[0]), say.others(told[1 : 1 + SAID])) if courses[0] else ()
+    return TrendPage(
+        frame=frames.pinned(
+            heading,
+            question,
+            title=_("{label}, trend", label=label),
+            place=phrase(
+                _("{label}, {first} to {last}"),
+                label=names.inside(label),
+                first=found.periods[0],
+                last=found.periods[-1],
+            ),
+            figures=question.figures,
+            settings=question.settings,
+            notices=frames.notices(heading, question, found.moved, _headline(found, courses[0])),
+        ),
+        answer=say.answer(courses[0], label, names.population(sex, found.holdings.name(area))),
+        lead=tuple(sentence for sentence in lead if sentence),
+        tables=(tables.years(found), tables.estimates(found)),
+        charts=(chart,) if chart else (),
+        cautions=_cautions(found),
+        twins=frames.twins(heading, question),
+        drawn=chart is not None,
+        choice=_choice(found),
+        computed=(
+            phrase(
+                _("Definition. {definition} Source: {source}."),
+                definition=_(found.indicator.definition),
+                source=found.indicator.source,
+            ),
+            *basis.computed(found.settings),
+        ),
+        basis=frames.basis(heading.edition.basis),
+    )
+
+
+def course(found: Series, line: int) -> say.Course | None:
+    """How a line ran; None where it has fewer than two values."""
+    ends = found.ends[line]
+    if ends is None:
+        return None
+    first, last = (found.estimate[line, found.periods.index(end)] for end in ends)
+    area, sex = found.lines[line]
+    return say.Course(
+        found.indicator,
+        sex,
+        found.holdings.name(area),
+        *ends,
+        first,
+        last,
+        found.change[line],
+        found.middle[line],
+        found.earlier[line],
+        found.later[line],
+    )
+
+
+def _headline(found: Series, first: say.Course | None) -> Headline | None:
+    """The figure by which a newer edition is measured: the first line's last."""
+    if first is None:
+        return None
+    label = _(
+        "{label} of {who} in {year}", label=_(found.indicator.label), who=first.who, year=first.last
+    )
+    there = found.moved.value if found.moved else np.nan
+    return Headline(label, found.indicator.unit, float(first.at_last.value), there)
+
+
+def _cautions(found: Series) -> tuple[Caution, ...]:
+    provisional = {
+        period
+        for status in found.status
+        for period, one in zip(found.periods, status, strict=True)
+        if one == "provisional"
+    }
+    small = [
+        _who(found, line)
+        for line in range(len(found.lines))
+        if tables.widest(found.estimate, line) > abs(float(found.change.value[line]))
+    ]
+    told = [basis.provisional(sorted(provisional)), say.small(small), *_missing(found)]
+    told += basis.reading(found.settings)
+    return tuple(Caution(word, text) for word, text in (one for one in told if one))
+
+
+def _missing(found: Series) -> list[basis.Told]:
+    """Why points are missing, once for each reason."""
+    lines: dict[int, list[str]] = {}
+    for line in range(len(found.lines)):
+        gone = found.estimate.reason[line][~np.isfinite(found.estimate.value[line])]
+        for code in sorted(set(gone.tolist()) - {int(Reason.NONE)}):
+            lines.setdefault(code, []).append(_who(found, line))
+    return [say.missing(who, reason(code, found.settings)) for code, who in lines.items()]
+
+
+def _who(found: Series, line: int) -> str:
+    area, sex = found.lines[line]
+    return names.population(sex, found.holdings.name(area))
+
+
+def _choice(found: Series) -> Choice:
+    heading = found.heading
+    keys = dict.fromkeys([*INDICATORS, found.indicator.key])
+    labels = {key: INDICATORS.get(key, found.indicator).label for key in keys}
+    return Choice(
+        action=f"/c/{heading.collection.code}/{heading.edition.number}/{found.question.view}",
+        offer=offer(found.holdings),
+        indicators=tuple((key, _(label)) for key, label in labels.items()),
+        asked=found.question,
+    )

@@ -1,0 +1,63 @@
+"""The tables of a trend page: years by series as printed, and every estimate in long form."""
+
+import numpy as np
+
+from engine.estimates import Estimate
+from server.exports.table import Cell, Column, Row, Table
+from server.pages.cells import columns, triple
+from server.results.series import Series
+from server.sentences import names
+from server.sentences.text import _
+
+
+def years(found: Series) -> Table:
+    """One row a year, the newest first; one column a series, under the name of its area."""
+    unit = found.indicator.unit
+    heads = [Column("year", _("year"))]
+    for area, sex in found.lines:
+        heads.append(
+            Column(
+                f"{area}.{sex}",
+                names.sex(sex),
+                decimals=unit.decimals,
+                span=found.holdings.name(area),
+            )
+        )
+    rows = []
+    for at in reversed(range(len(found.periods))):
+        cells: list[Cell] = [found.periods[at]]
+        cells += [_triple(found, line, at)[0] for line in range(len(found.lines))]
+        provisional = any(status[at] == "provisional" for status in found.status)
+        rows.append(Row(tuple(cells), provisional=provisional))
+    label = _(found.indicator.label)
+    return Table("years", f"{label}, {_(unit.label)}", tuple(heads), tuple(rows))
+
+
+def estimates(found: Series) -> Table:
+    """One row an area, sex and year, with interval and status: for machines, and for the intervals
+    that the printed table has no room for."""
+    unit = found.indicator.unit
+    heads = (
+        Column("area", _("area")),
+        Column("sex", _("sex")),
+        Column("year", _("year")),
+        *columns("value", _(found.indicator.label), unit.decimals, unit=_(unit.label)),
+        Column("status", _("status")),
+    )
+    rows = []
+    for line, (area, sex) in enumerate(found.lines):
+        for at, period in enumerate(found.periods):
+            cells: tuple[Cell, ...] = (area, sex, period, *_triple(found, line, at))
+            rows.append(Row((*cells, found.status[line][at])))
+    return Table("estimates", _("Every figure with its interval"), heads, tuple(rows))
+
+
+def _triple(found: Series, line: int, at: int) -> tuple[Cell, ...]:
+    return triple(found.estimate[line, at], found.indicator.unit, found.settings)
+
+
+def widest(estimate: Estimate, line: int) -> float:
+    """The width of the newest interval there is on a line; nan where there is none."""
+    width = (estimate.high - estimate.low)[line]
+    known = width[np.isfinite(width)]
+    return float(known[-1]) if len(known) else float("nan")

@@ -1,0 +1,204 @@
+"""What is said of an indicator through the years."""
+
+from dataclasses import dataclass
+
+from engine.estimates import Estimate
+from engine.indicators import Indicator
+from server.sentences import names
+from server.sentences.movements import (
+    Movement,
+    bracketed,
+    limits,
+    movement,
+    shown,
+    size_limits,
+    years,
+)
+from server.sentences.numbers import number
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.text import _
+
+CLEAR = (Movement.MORE, Movement.LESS, Movement.BARELY_MORE, Movement.BARELY_LESS)
+
+
+@dataclass(frozen=True, slots=True)
+class Course:
+    """One line: who, between which years, and by how much it changed."""
+
+    indicator: Indicator
+    sex: str
+    area: str  # its name
+    first: str
+    last: str
+    at_first: Estimate
+    at_last: Estimate
+    change: Estimate
+    middle: str  # "" where the run is too short to be parted
+    earlier: Estimate
+    later: Estimate
+
+    @property
+    def kind(self) -> Movement:
+        return movement(self.change, self.indicator.unit)
+
+    @property
+    def who(self) -> str:
+        return names.population(self.sex, self.area)
+
+    def size(self, change: Estimate) -> str:
+        """How large a change was, with its unit and without its sign."""
+        unit = self.indicator.unit
+        if unit.key == "years":
+            return years(float(change.value), unit.decimals)
+        text = number(abs(unit.scale * float(change.value)), unit.decimals)
+        if unit.key == "ratio":
+            return text
+        label = _("percentage points") if unit.label.startswith("%") else _(unit.label)
+        return f"{text}\N{NO-BREAK SPACE}{label}"
+
+
+def answer(course: Course | None, label: str, who: str) -> Sentence:
+    """The first line of the page, on its first series; None where it has fewer than two values."""
+    if course is None:
+        return phrase(
+            _(
+                "{label} of {who} cannot be followed through these years: fewer than two of them"
+                " have a figure."
+            ),
+            label=label,
+            who=who,
+        )
+    unit = course.indicator.unit
+    parts: dict[str, Piece | str] = {
+        "first": course.first,
+        "last": course.last,
+        "who": names.population_first(course.sex, course.area),
+        "label": names.inside(label),
+    }
+    if course.kind is Movement.WITHOUT_INTERVAL:
+        return phrase(
+            _(
+                "{Label} of {who}: {here} in {last}, {there} in {first}; how much of that is chance"
+                " is not known."
+            ),
+            Label=label,
+            here=shown(course.at_last, unit),
+            there=shown(course.at_first, unit),
+            **{**parts, "who": course.who},
+        )
+    if course.kind not in CLEAR:
+        return phrase(
+            _(
+                "No clear change in {label} of {who} between {first} and {last}:"
+                " {value} {interval}."
+            ),
+            value=shown(course.change, unit, signed=True),
+            interval=bracketed(limits(course.change, unit, signed=True)),
+            **{**parts, "who": course.who},
+        )
+    interval = size_limits(course.change, unit)
+    if course.kind in (Movement.BARELY_MORE, Movement.BARELY_LESS):
+        interval = _("{interval}, hardly more than chance alone could do", interval=interval)
+    parts |= {"amount": course.size(course.change), "interval": bracketed(interval)}
+    if (
+        unit.key == "years"
+        and course.indicator.key.startswith("e")
+        and course.indicator.key != "edagger"
+    ):
+        text = (
+            _("{who} gained {amount} of {label} between {first} and {last} {interval}.")
+            if course.change.value > 0
+            else _("{who} lost {amount} of {label} between {first} and {last} {interval}.")
+        )
+        return phrase(text, **parts)
+    text = (
+        _("{Label} of {who} rose by {amount} between {first} and {last} {interval}.")
+        if course.change.value > 0
+        else _("{Label} of {who} fell by {amount} between {first} and {last} {interval}.")
+    )
+    return phrase(text, Label=label, **{**parts, "who": course.who})
+
+
+def halves(course: Course) -> Sentence:
+    """How the change was spread over the two halves of the years."""
+    if not course.middle or course.kind not in CLEAR:
+        return ()
+    unit = course.indicator.unit
+    said = []
+    for change, first, last in (
+        (course.earlier, course.first, course.middle),
+        (course.later, course.middle, course.last),
+    ):
+        kind = movement(change, unit)
+        if kind is Movement.UNKNOWN or kind is Movement.WITHOUT_INTERVAL:
+            return ()
+        value = shown(change, unit, signed=True)
+        clear = _("no clear change") if kind not in CLEAR else value
+        said.append(
+            _(
+                "{clear} from {first} to {last} ({interval})",
+                clear=clear,
+                first=first,
+                last=last,
+                interval=limits(change, unit, signed=True),
+            )
+        )
+    return phrase(
+        _("In the two halves of these years: {earlier}; {later}."), earlier=said[0], later=said[1]
+    )
+
+
+def others(courses: list[Course]) -> Sentence:
+    """The other lines, in one sentence."""
+    said = []
+    for course in courses:
+        unit = course.indicator.unit
+        if course.kind in (Movement.UNKNOWN, Movement.WITHOUT_INTERVAL):
+            continue
+        if course.kind not in CLEAR:
+            said.append(
+                _(
+                    "{who}, no clear change ({interval})",
+                    who=course.who,
+                    interval=limits(course.change, unit, signed=True),
+                )
+            )
+        else:
+            said.append(
+                _(
+                    "{who} {value} ({interval})",
+                    who=course.who,
+                    value=shown(course.change, unit, signed=True),
+                    interval=limits(course.change, unit, signed=True),
+                )
+            )
+    if not said:
+        return ()
+    return phrase("{said}.", said=_("Over the same years: {list}", list="; ".join(said)))
+
+
+def finding(label: str, courses: list[Course]) -> str:
+    """The chart's title: where the lines end, as far as words can hold it."""
+    ends = [
+        _("{value} for {who}", value=shown(course.at_last, course.indicator.unit), who=course.who)
+        for course in courses[:2]
+    ]
+    if not ends:
+        return label
+    last = max(course.last for course in courses[:2])
+    return _("{label} in {year}: {ends}", label=label, year=last, ends=names.listed(ends))
+
+
+def small(lines: list[str]) -> tuple[str, str] | None:
+    """Lines whose interval in a single year is wider than all they changed by."""
+    if not lines:
+        return None
+    return _("Small numbers"), _(
+        "For {lines} a single year’s interval is wider than the change over all years drawn: no"
+        " single turn of these lines means much.",
+        lines=names.listed(lines, most=8),
+    )
+
+
+def missing(lines: list[str], why: str) -> tuple[str, str]:
+    return _("Not drawn"), _("{lines}: {why}", lines=names.listed(lines, most=8), why=why)
