@@ -26,6 +26,12 @@ def values(column: Array) -> tuple[float | None, ...]:
     return tuple(float(value) if np.isfinite(value) else None for value in column)
 
 
+def isolated(column: Array) -> list[int]:
+    """Where a line has a point between two gaps, which only a dot can show."""
+    known = np.pad(np.isfinite(column), 1)
+    return np.flatnonzero(known[1:-1] & ~known[:-2] & ~known[2:]).tolist()
+
+
 def at_age(grid: AgeGrid, column: Array, age: float) -> float:
     """The column's value in the group that holds an age, or the last one known below it."""
     known = [

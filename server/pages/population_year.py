@@ -136,7 +136,6 @@ def _lead(found: Findings) -> tuple[Sentence, ...]:
     said.append(
         say.not_read(
             found.estimates,
-            found.settings,
             open_age=found.loaded.panel.grid.open_age,
             reach=float(found.chain.open_reach),
             law=Piece(LAW, law),

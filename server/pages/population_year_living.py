@@ -94,14 +94,14 @@ def deaths(found: Findings, source: str) -> Chart | None:
         x_kind="age",
         x_range=axis(found),
         y_title=_("deaths"),
-        y_range=(0, 1.3 * highest),
+        y_range=(0, 1.35 * highest),
         y_ticks=ticks(0, highest),
         y_text=tuple(whole(at) for at in ticks(0, highest)),
         hover=_("age %{customdata}: %{y:,.0f} deaths"),
         table="life",
         series=tuple(series),
         marks=tuple(_marks(found)),
-        marks_top=1.03 * highest,
+        marks_top=1.1 * highest,
         notes=_first_year(grid, density, highest),
     )
 
@@ -114,7 +114,10 @@ def _deaths_unit(found: Findings) -> str:
         else _("Deaths per year of age in each age group, of 100,000 born")
     )
     last = float(found.chain.table.dx[-1])
-    if found.chain.modelled or not math.isfinite(last):
+    if found.chain.modelled:
+        age = found.loaded.panel.grid.open_age
+        return _("{text}; from {age} on single years by the fitted law", text=text, age=age)
+    if not math.isfinite(last):
         return text
     return _(
         "{text}; the {count} at {age} and over are not drawn",
@@ -138,11 +141,11 @@ def _marks(found: Findings) -> Iterable[Mark]:
 
 def _first_year(grid: AgeGrid, density: Array, highest: float) -> tuple[Note, ...]:
     """The first year's bar is named where its neighbours are too low to show."""
-    beside = density[1 : 1 + sum(start < 20 for start in grid.starts[1:])]
-    if grid.starts[1:2] != (1,) or not density[0] > 3 * np.max(beside, initial=0):
+    below = [value for start, value in zip(grid.starts, density, strict=False) if 0 < start < 40]
+    if grid.starts[1:2] != (1,) or not density[0] > 3 * max(below, default=0):
         return ()
     text = _("{count} in the first year", count=whole(float(density[0])))
-    return (Note(text, At(2.5, max(0.5 * float(density[0]), 0.05 * highest))),)
+    return (Note(text, At(2.5, max(below, default=0) + 0.06 * highest)),)
 
 
 def who(found: Findings) -> str:

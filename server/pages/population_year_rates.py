@@ -8,7 +8,7 @@ import numpy as np
 from engine.ages import AgeGrid, Array
 from server.charts.chart import At, Chart, Note, Series
 from server.charts.scales import log_ticks, ticks
-from server.pages.drawing import at_age, bars, places, single_years, values
+from server.pages.drawing import at_age, bars, isolated, places, single_years, values
 from server.pages.population_year_living import axis, who
 from server.pages.population_year_tables import DAYS, counted_groups
 from server.results.population_year import Findings, finite
@@ -36,6 +36,17 @@ def rates(found: Findings, source: str) -> Chart | None:
             at=At(68, at_age(grid, per_thousand, 53)),
         )
     ]
+    alone = isolated(per_thousand[:closed])
+    if alone:
+        series.append(
+            Series(
+                who(found),
+                places(grid.mids[alone]),
+                values(per_thousand[alone]),
+                draw="dots",
+                names=tuple(grid.labels[at] for at in alone),
+            )
+        )
     if found.chain.modelled:
         beyond = np.flatnonzero(inside & (np.arange(len(inside)) >= counted))
         series.append(
@@ -47,14 +58,14 @@ def rates(found: Findings, source: str) -> Chart | None:
                 role="s2",
                 weight="that",
                 names=tuple(grid.labels[at] for at in beyond),
-                at=At(float(grid.mids[beyond[-1]]), float(per_thousand[beyond[-1]]), "right", -8),
+                at=At(103, 0.25 * at_age(grid, per_thousand, 103), "center"),
             )
         )
     shown = log_ticks(low / 2.5, high * 1.5)
     gaps = bool(np.any(table.mx[:closed] == 0))
     return Chart(
         key="rates",
-        finding=say.rates(_lowest(found), found.estimates, found.settings.ageing_span),
+        finding=say.rates(*_lowest(found), found.estimates, found.settings.ageing_span),
         unit=_(
             "Deaths per 1,000 person-years, drawn at the middle of each age group; each step of"
             " the scale is a tenfold rate"
@@ -205,13 +216,14 @@ def _most(grid: AgeGrid, gain: Array) -> tuple[str, float]:
     return _("{first} to {last}", first=grid.starts[begin], last=grid.starts[end] - 1), share
 
 
-def _lowest(found: Findings) -> str:
-    """The ages with the lowest rate, in groups of at least five years after the first."""
-    panel = found.loaded.panel
-    wide = AgeGrid(tuple(at for at in panel.grid.starts if at % 5 == 0 or at == 1))
-    panel = panel.regroup(wide)
+def _lowest(found: Findings) -> tuple[str, int, int]:
+    """The ages with the lowest rate; how many groups have no deaths; how many there are. Groups
+    are of at least five years after the first ones."""
+    grid = found.loaded.panel.grid
+    wide = AgeGrid(tuple(at for at in grid.starts if at % 5 == 0 or at == 1))
+    panel = found.loaded.panel.regroup(wide)
     with np.errstate(all="ignore"):
-        rates = np.where(panel.deaths > 0, panel.deaths / panel.exposure, np.nan)
-    if not np.isfinite(rates).any():
-        return ""
-    return wide.labels[int(np.nanargmin(rates))]
+        rates = panel.deaths / panel.exposure
+    known = np.isfinite(rates)
+    lowest = wide.labels[int(np.argmin(np.where(known, rates, np.inf)))]
+    return lowest, int(np.sum(known & (rates == 0))), len(wide)

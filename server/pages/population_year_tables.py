@@ -2,7 +2,7 @@
 
 import numpy as np
 
-from engine.estimates import Estimate
+from engine.estimates import Estimate, Reason
 from engine.indicators import find
 from server.exports.table import Cell, Column, Gap, GapKind, Row, Table
 from server.pages.cells import columns, count, number, triple
@@ -33,6 +33,7 @@ def figures(found: Findings) -> Table:
             year=found.of.period,
             before=before.of.period,
         )
+    note = " ".join([note, *_why_missing(found)])
     return Table(
         "figures",
         _("The figures of {who}", who=names.sex_and_year(found.of.sex, found.of.period)),
@@ -40,6 +41,23 @@ def figures(found: Findings) -> Table:
         tuple(_figure_row(found, key) for key in USUAL),
         note,
     )
+
+
+def _why_missing(found: Findings) -> list[str]:
+    """Each reason why a figure or its interval is missing, and what it is missing from. That a
+    table ends too early is said above the table."""
+    missing: dict[int, list[str]] = {}
+    for key in USUAL:
+        sides = [found.estimates[key], found.before.change[key] if found.before else None]
+        for code in {int(side.reason) for side in sides if side is not None}:
+            if code not in (Reason.NONE, Reason.OPEN_GROUP_TOO_LARGE):
+                missing.setdefault(code, []).append(_(find(key).label))
+    if {len(labels) for labels in missing.values()} == {len(USUAL)}:
+        return [reason(code, found.settings) for code in missing]
+    return [
+        _("{labels}: {why}", labels="; ".join(labels), why=reason(code, found.settings))
+        for code, labels in sorted(missing.items())
+    ]
 
 
 def _figure_row(found: Findings, key: str) -> Row:

@@ -5,7 +5,6 @@ from collections.abc import Mapping
 
 from engine.estimates import Estimate, Reason
 from engine.indicators import INDICATORS
-from engine.settings import Settings
 from server.sentences import names
 from server.sentences.movements import (
     Movement,
@@ -19,7 +18,7 @@ from server.sentences.movements import (
 )
 from server.sentences.numbers import number, whole
 from server.sentences.pieces import Piece, Sentence, phrase
-from server.sentences.text import _
+from server.sentences.text import _, n_
 
 Estimates = Mapping[str, Estimate]
 
@@ -125,14 +124,18 @@ def meanings(estimates: Estimates) -> Sentence:
     return phrase("{said}", said=" ".join(said)) if said else ()
 
 
-def not_read(
-    estimates: Estimates, settings: Settings, *, open_age: int, reach: float, law: Piece
-) -> Sentence:
+def not_read(estimates: Estimates, *, open_age: int, reach: float, law: Piece) -> Sentence:
     """What a table that ends too early cannot tell, what that costs, and where a law helps out."""
+    short = {
+        "median": _("the median"),
+        "mode": _("the most common age at death"),
+        "edagger": _("the years lost per death (e-dagger)"),
+        "H": _("the unevenness of length of life (H)"),
+    }
     missing = [
-        INDICATORS[key]
-        for key, estimate in estimates.items()
-        if int(estimate.reason) == Reason.OPEN_GROUP_TOO_LARGE
+        text
+        for key, text in short.items()
+        if int(estimates[key].reason) == Reason.OPEN_GROUP_TOO_LARGE
     ]
     if not missing:
         return ()
@@ -142,9 +145,7 @@ def not_read(
             " reach that age, and how long they live on is known only on average. With the settings"
             " {law} a law fitted to the ages below spreads them, marked as a model."
         ),
-        figures=names.first_capital(
-            names.listed([names.inside(_(indicator.label)) for indicator in missing])
-        ),
+        figures=names.first_capital(names.listed(missing)),
         age=str(open_age),
         share=f"{whole(100 * reach)}\N{NO-BREAK SPACE}%",
         law=law,
@@ -200,16 +201,24 @@ def deaths(estimates: Estimates) -> str:
     return _("Deaths by age, as far as the table goes")
 
 
-def rates(lowest: str, estimates: Estimates, span: tuple[int, int]) -> str:
-    """`lowest` is the label of the ages with the lowest rate; empty where nobody died."""
-    if not lowest:
-        return _("Death rates by age")
+def rates(lowest: str, empty: int, groups: int, estimates: Estimates, span: tuple[int, int]) -> str:
+    """`lowest` are the ages with the lowest rate; in `empty` of the groups nobody died, where a
+    lowest rate says nothing."""
+    first = (
+        n_(
+            "In one of {groups} age groups nobody died",
+            "In {count} of {groups} age groups nobody died",
+            empty,
+            groups=groups,
+        )
+        if empty
+        else _("Death rates were lowest at ages {lowest}", lowest=lowest)
+    )
     if not known(estimates, "ageing_rate") or estimates["ageing_rate"].value <= 0:
-        return _("Death rates were lowest at ages {lowest}", lowest=lowest)
+        return first
     return _(
-        "Death rates were lowest at ages {lowest}; from {start} on they doubled every {years} years"
-        " of age",
-        lowest=lowest,
+        "{first}; from {start} on death rates doubled every {years} years of age",
+        first=first,
         start=span[0],
         years=number(math.log(2) / float(estimates["ageing_rate"].value), 1),
     )
