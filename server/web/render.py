@@ -19,6 +19,7 @@ from server.web.problem import Problem
 
 FRAME_BLOCKS = ("locator", "notices", "answer", "colophon")  # come along with any block
 VARY = "HX-Request-Type, HX-Target"
+READ = ["GET", "HEAD"]  # methods of every address that can be read: a link preview asks by HEAD
 PINNED = "private, no-cache"
 PASSING = "private, no-store"
 

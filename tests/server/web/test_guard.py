@@ -1,0 +1,100 @@
+"""Who is answered, and with which headers."""
+
+import logging
+from collections.abc import Iterator
+from pathlib import Path
+
+import pytest
+from starlette.testclient import TestClient
+
+from server.web.guard import FIXED
+from tests.server.web.site import Site, application, browser
+
+SAME = {"Sec-Fetch-Site": "same-origin"}
+
+
+@pytest.mark.parametrize("path", ["/small", "/nothing", "/missing.json", "/static/x/y", "/healthz"])
+def test_every_answer_has_the_fixed_headers(reader: TestClient, path: str) -> None:
+    answer = reader.get(path)
+    for name, value in FIXED.items():
+        assert answer.headers[name] == value
+    assert answer.headers["x-request-id"].count("-") == 1
+    assert answer.headers["server-timing"].startswith("total;dur=")
+
+
+@pytest.mark.parametrize(
+    ("client", "host", "status"),
+    [
+        ("127.0.0.1", "localhost:8000", 200),
+        ("127.0.0.9", "127.0.0.1", 200),
+        ("::1", "[::1]:8000", 200),
+        ("::ffff:127.0.0.1", "[::1]", 200),
+        ("192.0.2.7", "localhost", 403),
+        ("not an address", "localhost", 403),
+        ("127.0.0.1", "almanac.example", 403),
+        ("127.0.0.1", "localhost.example:80", 403),
+    ],
+)
+def test_only_this_computer_is_answered_under_its_own_names(
+    tmp_path: Path, client: str, host: str, status: int
+) -> None:
+    with browser(application(Site(), tmp_path), client=(client, 1), host=host) as reader:
+        answer = reader.get("/small")
+    assert answer.status_code == status
+    if status == 403:
+        assert "Ebbline answers" in answer.text
+        assert "Problem 403, request " in answer.text
+
+
+@pytest.mark.parametrize(
+    ("headers", "status"),
+    [
+        ({"Sec-Fetch-Site": "same-origin"}, 200),
+        ({"Sec-Fetch-Site": "none"}, 200),
+        ({"Sec-Fetch-Site": "cross-site"}, 403),
+        ({"Sec-Fetch-Site": "same-site", "Origin": "http://127.0.0.1:8000"}, 403),
+        ({"Origin": "http://127.0.0.1:8000"}, 200),
+        ({"Origin": "http://127.0.0.1:9000"}, 403),
+        ({"Origin": "null"}, 403),
+        ({"Cookie": "a=b"}, 403),
+        ({}, 200),
+    ],
+)
+def test_a_form_of_another_site_is_refused(
+    reader: TestClient, headers: dict[str, str], status: int
+) -> None:
+    assert reader.post("/done", headers=headers).status_code == status
+
+
+@pytest.fixture
+def small_limit(tmp_path: Path) -> Iterator[TestClient]:
+    with browser(application(Site(), tmp_path, upload_limit=1_000_000)) as client:
+        yield client
+
+
+def chunks(size: int) -> Iterator[bytes]:
+    for _ in range(size // 100_000):
+        yield b"x" * 100_000
+
+
+@pytest.mark.parametrize("announced", [True, False])
+def test_a_body_above_the_limit_gets_a_sentence(small_limit: TestClient, announced: bool) -> None:
+    content = b"x" * 1_100_000 if announced else chunks(1_100_000)
+    answer = small_limit.post("/done", content=content, headers=SAME)
+    assert answer.status_code == 413
+    assert "What was sent is larger than 1 MB." in answer.text
+    fits = small_limit.post("/done", content=chunks(900_000), headers=SAME)
+    assert (fits.status_code, fits.text) == (200, "900000")
+
+
+def test_a_fault_is_told_with_the_id_that_is_in_the_log(
+    reader: TestClient, caplog: pytest.LogCaptureFixture
+) -> None:
+    with caplog.at_level(logging.ERROR, logger="ebbline"):
+        answer = reader.get("/broken")
+    assert answer.status_code == 500
+    assert "This page could not be made, and the fault is not yours." in answer.text
+    assert answer.headers["x-request-id"] in caplog.text
+    assert "a fault" in caplog.text
+    assert "a fault" not in answer.text
+    assert reader.get("/small").status_code == 200
