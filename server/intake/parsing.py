@@ -174,8 +174,8 @@ def _sorted(read: Cells) -> _Sorted:
             problems += age_check.problems(marks, rows.row, sheet.name)
             failing |= marks.failing
     sound[rows.take[failing]] = False
-    wrong = read.placed & ~sound
-    spoiled = np.unique(read.place[wrong])
+    torn = rows.place[rows.parted | rows.parted_before]  # rows of theirs may be the unplaced ones
+    spoiled = np.unique(np.concatenate([read.place[read.placed & ~sound], torn]))
     return _Sorted(
         problems=problems,
         rows=len(sheet),

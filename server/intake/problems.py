@@ -121,7 +121,7 @@ class Problem:
     def sentence(self, translate: Translate = plain, show: Show = figure) -> str:
         """The whole problem in one line, as a terminal or an error page prints it."""
         words = self.worded(translate, show)
-        place = [self.file, self.rows_worded(translate, show)]
+        place = [self.file or translate("the upload"), self.rows_worded(translate, show)]
         if self.column:
             place.append(translate("column {column}", column=self.column))
         return translate(

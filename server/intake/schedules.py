@@ -27,6 +27,7 @@ class Ordered:
     last: Flags
     broken: Flags  # its place has rows whose age cannot be read
     parted: Flags  # rows of unknown place stand in the file between this row and the next
+    parted_before: Flags  # and between the row before and this one
 
     @property
     def row(self) -> Ints:
@@ -96,8 +97,8 @@ def ordered(cells: Cells, sound: Flags) -> Ordered:
     if cells.sheet.mapping.last_age_open:
         opened = opened | (last & (cells.end[take] < 0))
     unread = cells.placed & ~sound
-    lost = np.cumsum(~cells.placed)
-    between = lost[np.roll(take, -1)] != lost[take] if len(take) else lost
+    lost = np.cumsum(~cells.placed)[take]  # rows of unknown place up to this one
+    ahead = np.append(lost, np.count_nonzero(~cells.placed))
     return Ordered(
         cells=cells,
         take=take,
@@ -108,7 +109,8 @@ def ordered(cells: Cells, sound: Flags) -> Ordered:
         first=np.append(True, change)[: len(take)],
         last=last,
         broken=np.isin(place, cells.place[unread]) if unread.any() else np.zeros(len(take), bool),
-        parted=between,
+        parted=ahead[1:] != lost,
+        parted_before=lost != np.append(0, lost)[:-1],
     )
 
 

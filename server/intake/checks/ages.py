@@ -76,13 +76,13 @@ def _overlap(rows: Ordered) -> Iterator[Marks]:
 
 
 def _late_start(rows: Ordered) -> Iterator[Marks]:
-    failing = rows.first & ~rows.broken & (rows.start != 0)
+    failing = rows.first & ~rows.broken & ~rows.parted_before & (rows.start != 0)
     if failing.any():
         yield Marks(_column(rows), failing, {"text": rows.label(failing)})
 
 
 def _no_open_interval(rows: Ordered) -> Iterator[Marks]:
-    failing = rows.last & ~rows.broken & ~rows.open
+    failing = rows.last & ~rows.broken & ~rows.parted & ~rows.open
     if failing.any():
         start = rows.start[failing].astype(str).astype(object)
         yield Marks(_column(rows), failing, {"text": rows.label(failing), "start": start})

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 from engine.panel import SEXES
 from server.intake.areas import is_code
-from server.intake.cells import only_code, whole_code
+from server.intake.cells import whole_code
 from server.intake.checks.check import Check
 from server.intake.labels import read_year
 from server.intake.layout import Layout
@@ -47,21 +47,33 @@ def _no_area(mapped: Mapped) -> Iterator[Fault]:
         yield Fault(column="area", row=1)
 
 
-def _bad_setting(mapped: Mapped) -> Iterator[Fault]:
-    mapping = mapped.mapping
-    sexes = [("only_sex", mapping.only_sex), *mapping.sex_codes]
-    for what, sex in sexes:
-        if sex and sex not in SEXES:
-            yield Fault(values={"what": f"{what}: {sex}", "expected": "f, m, p"})
-    for year in mapping.provisional_years:
+def _twice(mapped: Mapped) -> Iterator[Fault]:
+    fields: dict[str, list[str]] = {}
+    for field in COLUMNS:
+        if column := mapped.mapping.column(field):
+            fields.setdefault(column, []).append(field)
+    for column, used in fields.items():
+        if len(used) > 1:
+            yield Fault(column=column, row=1, values={"fields": ", ".join(used)})
+
+
+def _bad_sex(mapped: Mapped) -> Iterator[Fault]:
+    for text, sex in (("", mapped.mapping.only_sex), *mapped.mapping.sex_codes):
+        if sex not in SEXES and (sex or text):
+            yield Fault(values={"text": text, "sex": sex})
+
+
+def _bad_year(mapped: Mapped) -> Iterator[Fault]:
+    for year in mapped.mapping.provisional_years:
         if str(read_year(year)) != year:
-            yield Fault(values={"what": f"provisional_years: {year}", "expected": "2014"})
-    codes = [("whole", whole_code(mapping)), *(("delivered", code) for code in mapping.delivered)]
-    if not (mapping.area or mapping.area_name):
-        codes.append(("only_area", mapping.only_area if not only_code(mapping) else ""))
-    for what, code in codes:
+            yield Fault(values={"text": year})
+
+
+def _bad_code(mapped: Mapped) -> Iterator[Fault]:
+    mapping = mapped.mapping
+    for code in (mapping.only_area, whole_code(mapping), *mapping.delivered):
         if code and not is_code(code):
-            yield Fault(values={"what": f"{what}: {code}", "expected": "A-Z a-z 0-9 _ . -"})
+            yield Fault(values={"text": code})
 
 
 CHECKS: tuple[Check[Mapped], ...] = (
@@ -93,13 +105,40 @@ CHECKS: tuple[Check[Mapped], ...] = (
         find=_no_area,
     ),
     Check(
-        key="bad_setting",
+        key="column_used_twice",
         severity="error",
-        meaning="Something set in the mapping cannot be used.",
-        found="{what}",
-        expected="in this form: {expected}",
-        remedy="Correct it in the mapping.",
-        find=_bad_setting,
+        meaning="The mapping takes one column for two things.",
+        found="this column mapped to {fields}",
+        expected="a column of its own for each",
+        remedy="Correct the mapping.",
+        find=_twice,
+    ),
+    Check(
+        key="bad_sex_setting",
+        severity="error",
+        meaning="The mapping gives a code for the sex a meaning that is none.",
+        found="“{sex}” as the meaning of “{text}”",
+        expected="f, m or p (female, male, persons)",
+        remedy="Correct the mapping.",
+        find=_bad_sex,
+    ),
+    Check(
+        key="bad_provisional_year",
+        severity="error",
+        meaning="The mapping names a provisional year that is no calendar year.",
+        found="“{text}”",
+        expected="a calendar year of four digits, such as 2014",
+        remedy="Correct the mapping.",
+        find=_bad_year,
+    ),
+    Check(
+        key="bad_area_setting",
+        severity="error",
+        meaning="A code of an area in the mapping has signs that no address can carry.",
+        found="“{text}”",
+        expected="1 to 32 letters A–Z, digits, full stops, hyphens or underscores",
+        remedy="Correct the mapping.",
+        find=_bad_code,
     ),
 )
 

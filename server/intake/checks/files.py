@@ -187,7 +187,7 @@ KINDS = {check.key: check for check in CHECKS}
 
 def problems_of(file: Layout) -> list[Problem]:
     """All that is wrong with the file as a table of text; of what is no text, only that."""
-    for only in ("not_text", "empty_file"):
+    for only in ("not_text", "empty_file", "too_many_columns"):
         if problems := KINDS[only].problems(file, file.name):
             return problems
     return [problem for check in CHECKS for problem in check.problems(file, file.name)]

@@ -26,7 +26,8 @@ NEIGHBOURS = (-2, -1, 1, 2)  # years looked at, as far as the series has them
 
 
 def _expected(values: Array, place: Ints) -> Array:
-    """Median of the neighbouring years, [line, age]; nan where fewer than two are there."""
+    """What the neighbouring years let expect, [line, age]: their median; where that lies between
+    two of them, what is nearest to the count itself. nan where fewer than two are there."""
     around = np.full((len(NEIGHBOURS), *values.shape), np.nan)
     lines = np.arange(len(place))
     for number, step in enumerate(NEIGHBOURS):
@@ -36,10 +37,11 @@ def _expected(values: Array, place: Ints) -> Array:
         around[number, near] = values[other[near]]
     around.sort(axis=0)  # nan last
     count = np.sum(~np.isnan(around[:, :, 0]), axis=0)
-    low, high = (count - 1) // 2, count // 2
-    middle: Array = (around[low, lines] + around[np.minimum(high, len(around) - 1), lines]) / 2
-    middle[count < 2] = np.nan
-    return middle
+    low = around[(count - 1) // 2, lines]
+    high = around[np.minimum(count // 2, len(around) - 1), lines]
+    expected: Array = np.clip(values, low, high)
+    expected[count < 2] = np.nan
+    return expected
 
 
 def _jumps(values: Array, expected: Array, limit: Limit) -> Flags:

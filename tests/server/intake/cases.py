@@ -1,0 +1,159 @@
+"""One spoilt upload for each kind of problem."""
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+from server.intake.checks.files import MOST_COLUMNS
+from server.intake.parsing import Handed
+from tests.server.intake.tables import (
+    births,
+    counts,
+    csv,
+    deaths,
+    population,
+    rows,
+    setting,
+    where,
+    without,
+)
+
+SOUND = rows()
+NORTH_2012 = where(SOUND, area="north", year=2012)
+OLDEST = where(NORTH_2012, age="85+")
+WOMEN = where(NORTH_2012, sex="f")
+
+
+@dataclass(frozen=True)
+class Case:
+    key: str
+    files: Callable[[], list[Handed]]
+    also: str = ""  # another kind that the same fault must trip
+
+
+def _set(picked: list[dict[str, object]], **values: object) -> Callable[[], list[Handed]]:
+    return lambda: [counts(setting(SOUND, picked, **values))]
+
+
+def _mapped(**mapping: object) -> Callable[[], list[Handed]]:
+    return lambda: [counts(SOUND, **mapping)]
+
+
+def _bytes(content: bytes) -> Callable[[], list[Handed]]:
+    return lambda: [counts(content)]
+
+
+def _persons(extra: int) -> list[dict[str, object]]:
+    """The table with persons beside the sexes, some too many in one cell."""
+    people = [
+        {
+            **woman,
+            "sex": "persons",
+            "deaths": int(str(woman["deaths"])) * 2,
+            "population": int(str(woman["population"])) * 2,
+        }
+        for woman in where(SOUND, sex="f")
+    ]
+    picked = where(people, area="north", year=2012, age="85+")
+    return SOUND + setting(people, picked, deaths=int(str(picked[0]["deaths"])) + extra)
+
+
+WHOLE = rows(("isle",), times=2)
+ONE = OLDEST[:1]
+WIDE = ",".join(f"c{number}" for number in range(MOST_COLUMNS + 1)).encode() + b"\n1\n"
+ALL_AGES = [{**WOMEN[0], "age": "all ages", "deaths": 2_000, "population": 68_259}]
+
+CASES = (
+    Case("not_text", _bytes(b"PK\x03\x04 and so on")),
+    Case("not_utf8", _bytes(csv(SOUND).replace(b"north", "nørth".encode("latin-1")))),
+    Case("empty_file", _bytes(b"\n\n")),
+    Case("no_rows", _bytes(csv(SOUND).split(b"\n")[0])),
+    Case("stray_quote", _bytes(csv(SOUND).replace(b"north,2012", b'no"rth,2012', 1))),
+    Case("blank_heading", lambda: [counts(csv(SOUND).replace(b"area,", b",", 1), area="")]),
+    Case("doubled_heading", _bytes(csv(SOUND).replace(b"population", b"deaths", 1))),
+    Case("too_many_columns", _bytes(WIDE)),
+    Case("too_many_rows", _bytes(b"a\n" + b"1\n" * 3_000_001)),
+    Case("uneven_rows", _bytes(csv(SOUND).replace(b"85+,642", b"85+,1,642", 1))),
+    Case("missing_column", _mapped(age="")),
+    Case("unknown_column", _mapped(deaths="dead")),
+    Case("no_area", _mapped(area="")),
+    Case("column_used_twice", _mapped(area_name="sex")),
+    Case("bad_sex_setting", _mapped(sex_codes=(("1", "man"),))),
+    Case("bad_provisional_year", _mapped(provisional_years=("14",))),
+    Case("bad_area_setting", _mapped(area="", only_area="north east")),
+    Case("area_names_differ", lambda: [_named("South shore", area="area")]),
+    Case(
+        "wholes_differ",
+        lambda: [deaths(SOUND, whole="isle"), population(SOUND, whole="island")],
+    ),
+    Case("unknown_delivered", _mapped(delivered=("isle",))),
+    Case("unreadable_year", _set(WOMEN, year="12")),
+    Case("unknown_sex", _set(WOMEN, sex="F/M")),
+    Case("unreadable_age", _set(ONE, age="not stated")),
+    Case("unreadable_area_code", _set(NORTH_2012, area="north east")),
+    Case("missing_area_name", lambda: [_named("", area="")]),
+    Case("area_names_share_code", lambda: [_named("Nörth", area="", area_name="name")]),
+    Case("unknown_status", lambda: [_status("maybe")]),
+    Case("thousands_separator", _set(ONE, deaths="1,204")),
+    Case("decimal_comma", _set(ONE, deaths="12,5")),
+    Case("not_a_number", _set(ONE, deaths="twelve")),
+    Case("missing_count", _set(ONE, deaths="")),
+    Case("negative_count", _set(ONE, deaths="-4")),
+    Case("not_finite", _set(ONE, population="inf")),
+    Case("duplicate_cell", lambda: [counts(SOUND + ONE)]),
+    Case("gap_of_ages", lambda: [counts(without(SOUND, where(WOMEN, age="15-44")))]),
+    Case("overlap_of_ages", _set(where(WOMEN, age="15-44"), age="10-44")),
+    Case("ages_start_late", lambda: [counts(without(SOUND, where(WOMEN, age="0")))]),
+    Case("no_open_interval", _set(ONE, age="85-99")),
+    Case("deaths_without_population", lambda: [deaths(SOUND), population(without(SOUND, WOMEN))]),
+    Case("population_without_deaths", lambda: [deaths(SOUND[:-14]), population(SOUND)]),
+    Case("grids_differ", lambda: [deaths(SOUND), population(_joined("5-14", "15-44", "5-44"))]),
+    Case("no_common_grid", lambda: [deaths(SOUND), population(_only_old())]),
+    Case("deaths_where_nobody_lived", _set(ONE, population=0), "jump_of_population"),
+    Case("years_missing", lambda: [counts(without(SOUND, NORTH_2012))]),
+    Case("persons_differ", lambda: [counts(_persons(1))]),
+    Case("whole_differs", lambda: [counts(_whole(1), whole="isle")]),
+    Case(
+        "parts_missing",
+        lambda: [counts(without(_whole(0), where(SOUND, area="north", year=2014)), whole="isle")],
+    ),
+    Case("all_ages_differ", lambda: [counts(SOUND + ALL_AGES)]),
+    Case("only_all_ages", lambda: [counts(without(SOUND, WOMEN) + ALL_AGES)]),
+    Case("jump_of_deaths", _set(ONE, deaths=1_010)),
+    Case("jump_of_population", _set(WOMEN[3:4], population=41_000)),
+    Case("infant_deaths_exceed_births", lambda: [counts(SOUND), births(42)]),
+    Case("fractional_deaths", _set(ONE, deaths=640.5)),
+    Case("age_groups_change", lambda: [counts(_joined("5-14", "15-44", "5-44", WOMEN))]),
+)
+
+
+def _named(name: str, **mapping: object) -> Handed:
+    """Names beside codes: North and South, but this one for the last row."""
+    table = [row | {"name": str(row["area"]).title()} for row in SOUND]
+    table[-1]["name"] = name
+    return counts(table, **({"area_name": "name"} | mapping))
+
+
+def _status(word: str) -> Handed:
+    table = [row | {"state": "final"} for row in SOUND]
+    table[-1]["state"] = word
+    return counts(table, status="state")
+
+
+def _joined(
+    first: str, second: str, together: str, among: list[dict[str, object]] = SOUND
+) -> list[dict[str, object]]:
+    """The table with two age groups in one, everywhere or among some rows."""
+    table = without(SOUND, where(among, age=second))
+    return setting(table, where(among, age=first), age=together)
+
+
+def _only_old() -> list[dict[str, object]]:
+    table = [row for row in SOUND if row["age"] in ("0", "1-4")]
+    table = setting(table, where(table, age="0"), age="0-49")
+    return setting(table, where(table, age="1-4"), age="50+")
+
+
+def _whole(extra: int) -> list[dict[str, object]]:
+    """The table with the whole beside its parts, some too many in one cell."""
+    picked = where(WHOLE, year=2012, age="85+", sex="f")
+    return SOUND + setting(WHOLE, picked, deaths=int(str(picked[0]["deaths"])) + extra)
