@@ -34,6 +34,7 @@ class Series:
     widths: tuple[float, ...] = ()  # of bars, in units of x
     at: At | Literal["end"] | None = None  # where the label stands; None: not labelled
     short: str = ""  # label at line's end on the phone
+    name: str = ""  # in the hover label, where the label on the chart says more than who
     names: tuple[str, ...] = ()  # one name a point, for the hover label
     provisional: tuple[bool, ...] = ()  # hollow points
 

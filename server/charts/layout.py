@@ -269,8 +269,13 @@ class _Canvas:
         if not self.row:
             return
         under: Part = {"y": 0, "yref": "paper", "yanchor": "top"}
-        for x, text in chart.foot_row:
-            yield self._word(text, size=size, x=x, xref="x", xanchor="center", yshift=-34, **under)
+        wanted = [self.px(x) for x, _ in chart.foot_row]
+        widest = max(len(text) for _, text in chart.foot_row) * CHARACTER * size / 14.5
+        apart = min(widest + 3, self.width / len(wanted))
+        got = spread(wanted, apart, -self.margin["l"], self.width)
+        for (x, text), want, at in zip(chart.foot_row, wanted, got, strict=True):
+            place = {"x": x, "xref": "x", "xanchor": "center", "xshift": at - want}
+            yield self._word(text, size=size, yshift=-34, **place, **under)
         edge: Part = {"x": 1, "xref": "paper", "xanchor": "right", "xshift": self.margin["r"] - 6}
         yield self._word(chart.foot_sum, size=size + 1.5, weight=700, yshift=-33, **edge, **under)
         yield self._word(self.say("sum"), "@ink-2", style="italic", yshift=-9, **edge, **under)

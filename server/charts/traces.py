@@ -148,7 +148,8 @@ def _whiskers(series: Series, color: str, thickness: float) -> Trace:
 def _hover(series: Series, chart: Chart) -> Trace:
     """The label of a point: the series, then the chart's own template of age or year and value."""
     named = {"customdata": [html.escape(name) for name in series.names]} if series.names else {}
-    return {"hovertemplate": f"{html.escape(series.label)}, {chart.hover}<extra></extra>"} | named
+    who = html.escape(series.name or series.label)
+    return {"hovertemplate": f"{who}, {chart.hover}<extra></extra>"} | named
 
 
 def _short(values: Sequence | list[float | None]) -> list[float | None]:

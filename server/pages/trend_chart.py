@@ -28,9 +28,8 @@ def draw(found: Series, finding: str, source: str) -> Chart | None:
         for end in (np.nanmin, np.nanmax)
     )
     room = 0.06 * ((high - low) or abs(high) or 1.0)
-    bottom = 0.0 if 0 <= low < 0.25 * high else low - room
+    bottom, shown = _scale(low, high + room)
     decimals = found.indicator.unit.decimals
-    shown = ticks(bottom, high + room)
     unit = _(found.indicator.unit.label)
     return Chart(
         key="trend-lines",
@@ -50,13 +49,19 @@ def draw(found: Series, finding: str, source: str) -> Chart | None:
         else _("{unit} (scale begins at {start})", unit=unit, start=number(bottom, decimals)),
         y_range=(bottom, high + room),
         y_ticks=shown,
-        y_text=tuple(
-            number(at, 0 if all(one == round(one) for one in shown) else decimals) for at in shown
-        ),
-        hover=f"%{{x}}: %{{y:,.{decimals}f}}",
+        hover=f"%{{customdata}}: %{{y:,.{decimals}f}}",
         table="years",
         series=tuple(_line(found, line, *scaled) for line in range(len(found.lines))),
     )
+
+
+def _scale(low: float, high: float) -> tuple[float, tuple[float, ...]]:
+    """Where the scale begins, 0 where it is near, else a tick below all points; and its ticks."""
+    if 0 <= low < 0.25 * high:
+        return 0.0, ticks(0.0, high)
+    step = float(np.diff(ticks(low, high))[0]) if len(ticks(low, high)) > 1 else high - low
+    bottom = float(np.floor(low / step) * step)
+    return bottom, ticks(bottom, high)
 
 
 def _unit(found: Series) -> str:
@@ -91,7 +96,7 @@ def _line(found: Series, line: int, value: Array, low: Array, high: Array) -> Li
     several = len({one for one, _sex in found.lines}) > 1
     who = f"{name}, {names.sex(sex)}" if several else names.sex(sex)
     return Line(
-        who,
+        f"{who} {text}",
         tuple(float(period) for period in found.periods),
         values(value[line]),
         sex=sex,  # type: ignore[arg-type]
@@ -101,6 +106,8 @@ def _line(found: Series, line: int, value: Array, low: Array, high: Array) -> Li
         high=_limits(high[line]),
         at="end" if labelled and len(last) else None,
         short=f"{name} {text}" if several else f"{names.sex(sex)} {text}",
+        name=who,
+        names=found.periods,
         provisional=tuple(status == "provisional" for status in found.status[line]),
     )
 

@@ -34,14 +34,14 @@ class TooLarge(ValueError):
 
 @dataclass(frozen=True, slots=True)
 class Series:
-    """Estimates [line, period]; a line is an area and sex, in the question's order."""
+    """Estimates [line, period]; a line is an area and sex."""
 
     heading: Heading
     holdings: Holdings
     question: TrendQuestion
     settings: Settings
     indicator: Indicator
-    lines: tuple[tuple[str, str], ...]
+    lines: tuple[tuple[str, str], ...]  # in the tree order of their areas
     periods: tuple[str, ...]
     estimate: Estimate
     status: tuple[tuple[str, ...], ...]  # [line][period]: final, provisional; "" where not held
@@ -62,7 +62,7 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
     """
     held = holdings(session, heading.collection.code, heading.edition.number)
     settings, indicator = named.find(question.settings), indicators.find(question.of)
-    lines, periods = question.series, _periods(held, question)
+    lines, periods = _in_tree_order(held, question), _periods(held, question)
     wanted = [PopulationYear(*line, period) for line in lines for period in periods]
     _require(held, question, wanted, indicator)
     loaded = load(session, heading.collection.code, heading.edition.number, wanted)
@@ -92,6 +92,12 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
         later=_changes(collection, lines, spans.later, loaded, indicator, settings),
         moved=_moved(session, heading, lines[0], ends[0], indicator, settings),
     )
+
+
+def _in_tree_order(held: Holdings, question: TrendQuestion) -> tuple[tuple[str, str], ...]:
+    """The whole before its parts, whatever their codes; an area not held stays last, refused later."""
+    order = {area.code: at for at, area in enumerate(held.areas)}
+    return tuple(sorted(question.series, key=lambda line: order.get(line[0], len(order))))
 
 
 def _periods(held: Holdings, question: TrendQuestion) -> tuple[str, ...]:
