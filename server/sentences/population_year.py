@@ -65,9 +65,9 @@ def change(e0: Estimate, period: str) -> Sentence:
     amount = years(float(e0.value), unit.decimals)
     if kind is Movement.TOO_SMALL:
         return phrase(
-            _("Against {year} nothing changed that {decimals} decimal places would show."),
+            _("The change from {year} goes beyond chance, but is less than {least}."),
             year=period,
-            decimals=str(unit.decimals),
+            least=years(10.0**-unit.decimals, unit.decimals),
         )
     if kind is Movement.NOT_CLEAR:
         return phrase(

@@ -1,0 +1,20 @@
+"""Every reason has its sentence."""
+
+import pytest
+
+from engine.estimates import Reason
+from engine.settings import find
+from server.sentences.reasons import reason
+
+
+@pytest.mark.parametrize("code", [code for code in Reason if code is not Reason.NONE])
+def test_every_reason_is_a_sentence(code: Reason) -> None:
+    said = reason(int(code), find("almanac-1"))
+    assert said[0].isupper()
+    assert said.endswith(".")
+
+
+def test_numbers_in_it_are_those_of_the_settings() -> None:
+    settings = find("almanac-1")
+    assert "5,000" in reason(Reason.TOO_FEW_PERSON_YEARS, settings)
+    assert "5 %" in reason(Reason.OPEN_GROUP_TOO_LARGE, settings)
