@@ -274,7 +274,7 @@ class _Canvas:
         apart = min(widest + 3, self.width / len(wanted))
         got = spread(wanted, apart, -self.margin["l"], self.width)
         for (x, text), want, at in zip(chart.foot_row, wanted, got, strict=True):
-            place = {"x": x, "xref": "x", "xanchor": "center", "xshift": at - want}
+            place: Part = {"x": x, "xref": "x", "xanchor": "center", "xshift": at - want}
             yield self._word(text, size=size, yshift=-34, **place, **under)
         edge: Part = {"x": 1, "xref": "paper", "xanchor": "right", "xshift": self.margin["r"] - 6}
         yield self._word(chart.foot_sum, size=size + 1.5, weight=700, yshift=-33, **edge, **under)

@@ -95,7 +95,7 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
 
 
 def _in_tree_order(held: Holdings, question: TrendQuestion) -> tuple[tuple[str, str], ...]:
-    """The whole before its parts, whatever their codes; an area not held stays last, refused later."""
+    """The whole before its parts, whatever their codes; areas not held last."""
     order = {area.code: at for at, area in enumerate(held.areas)}
     return tuple(sorted(question.series, key=lambda line: order.get(line[0], len(order))))
 
