@@ -3,17 +3,16 @@
 import datetime as dt
 from dataclasses import replace
 
-from server.actions.check_upload import check_upload
-from server.actions.map_upload import map_upload
-from server.actions.receive_upload import receive_upload
-
 from seed_scenarios.quillmere_counts import REGIONS, REVISED, WHOLE, YEARS, Counts, counted
 from seed_scenarios.quillmere_files import births_csv, deaths_csv, population_csv
 from server.actions import LOCAL, Basis, Mapping, Session, Viewer
+from server.actions.check_upload import check_upload
 from server.actions.commit_upload import commit_upload
 from server.actions.create_collection import create_collection
+from server.actions.map_upload import map_upload
+from server.actions.receive_upload import receive_upload
 
-CODE = "quillmere"
+CODE, NAME = "quillmere", "All deaths, Quillmere"
 STORY = (
     "Six regions of an island country that is nowhere, 1999 to 2023, women and men, drawn by "
     "chance from published mortality laws. Length of life grows everywhere, but: in Tollbay a "
@@ -31,6 +30,10 @@ BASIS = Basis(
     population="midyear",
     population_date="1 July of each year",
     source="Statistical Office of Quillmere: civil register, population register",
+)
+NOTES = (
+    "First delivery: 1999 to 2022 final, 2023 provisional.",
+    f"Revision of {REVISED} in Northlade: deaths under inquest, left out at first.",
 )
 _COLUMNS = Mapping(
     year="year",
@@ -52,20 +55,18 @@ Files = dict[str, tuple[str, bytes]]  # role: name and content
 
 def build(session: Session, *, now: dt.datetime) -> None:
     """Open the collection and hand in its two editions."""
-    create_collection(
-        session, code=CODE, name="All deaths, Quillmere", owner=OFFICE.name, by=OFFICE, now=now
-    )
+    create_collection(session, code=CODE, name=NAME, owner=OFFICE.name, by=OFFICE, now=now)
     everywhere = (*(region.code for region in REGIONS), WHOLE.code)
     _hand_in(
         session,
         _files(counted(revised=False), YEARS, everywhere),
-        note="First delivery: 1999 to 2022 final, 2023 provisional.",
+        note=NOTES[0],
         now=now,
     )
     _hand_in(
         session,
         _files(counted(revised=True), (REVISED,), ("northlade", WHOLE.code)),
-        note=f"Revision of {REVISED} in Northlade: deaths under inquest, left out at first.",
+        note=NOTES[1],
         now=now,
     )
 
