@@ -6,10 +6,11 @@ A digest covers codes, status, age starts and numbers, never row ids, dates, peo
 import hashlib
 import json
 from collections.abc import Iterable
+from functools import lru_cache
 
 import numpy as np
 
-from engine.ages import Array
+from engine.ages import AgeGrid, Array
 from server.store.records import Area, Basis, Key, Vector
 
 DECIMALS = 6  # of a count: nobody delivers a millionth of a person-year
@@ -32,10 +33,18 @@ def canonical(values: Array) -> Array:
     return numbers + 0.0  # -0.0 + 0.0 is 0.0
 
 
+@lru_cache(maxsize=256)
+def starts(grid: AgeGrid) -> str:
+    """Code of a grid; thousands of schedules share one."""
+    return grid.code
+
+
 def of_schedule(key: Key, vector: Vector) -> bytes:
     """Digest of one schedule, 32 bytes."""
     codes = ("schedule", key.area, key.sex, key.period, key.measure, key.cause)
-    return _digest(*codes, vector.status, vector.grid.code, tail=canonical(vector.values).tobytes())
+    return _digest(
+        *codes, vector.status, starts(vector.grid), tail=canonical(vector.values).tobytes()
+    )
 
 
 def of_area(area: Area) -> bytes:

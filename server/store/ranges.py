@@ -27,7 +27,7 @@ class Difference:
 
     close: tuple[int, ...]  # ids of rows that hold no longer
     again: tuple[int, ...]  # ids of rows of the base, no longer open, that hold again
-    add: frozenset[RowKey]  # keys of what was handed in and is new
+    add: Mapping[RowKey, bytes]  # what was handed in and is new: its key and digest
     digests: tuple[bytes, ...]  # of everything that holds
 
 
@@ -63,7 +63,7 @@ def difference(
     return Difference(
         close=tuple(id_ for key, (id_, _) in open_rows.items() if key not in same),
         again=tuple(id_ for key, (id_, _) in kept.items() if key not in same and key not in handed),
-        add=frozenset(key for key in handed if key not in same),
+        add={key: digest for key, digest in handed.items() if key not in same},
         digests=tuple(wanted.values()),
     )
 

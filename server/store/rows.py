@@ -23,34 +23,35 @@ def of(key: Key) -> RowKey:
     return tuple(getattr(key, name) for name in Schedule.KEY)
 
 
-def schedules(session: Session, wanted: frozenset[RowKey], change: Change) -> Rows:
-    cells = {key: cell for key, cell in change.cells.items() if of(key) in wanted}
-    grids = _grids(session, {cell.grid.code for cell in cells.values()})
+def schedules(session: Session, added: Mapping[RowKey, bytes], change: Change) -> Rows:
+    cells = {row: cell for key, cell in change.cells.items() if (row := of(key)) in added}
+    grids = _grids(session, {digests.starts(cell.grid) for cell in cells.values()})
     for key, cell in cells.items():
+        named = dict(zip(Schedule.KEY, key, strict=True))
         yield {
-            **asdict(key),
-            "period_start": start_of(key.period),
+            **named,
+            "period_start": start_of(named["period"]),
             "status": cell.status,
-            "grid_id": grids[cell.grid.code],
+            "grid_id": grids[digests.starts(cell.grid)],
             "vector": digests.canonical(cell.values).tobytes(),
-            "digest": digests.of_schedule(key, cell),
+            "digest": added[key],
         }
 
 
-def areas(wanted: frozenset[RowKey], change: Change) -> Rows:
+def areas(added: Mapping[RowKey, bytes], change: Change) -> Rows:
     for area in change.areas:
-        if (area.code,) in wanted:
+        if digest := added.get((area.code,)):
             yield {
                 "code": area.code,
                 "parent": area.parent,
                 "delivered": area.delivered,
-                "digest": digests.of_area(area),
+                "digest": digest,
             }
 
 
-def basis(wanted: frozenset[RowKey], change: Change) -> Rows:
-    if () in wanted:
-        yield {**asdict(change.basis), "digest": digests.of_basis(change.basis)}
+def basis(added: Mapping[RowKey, bytes], change: Change) -> Rows:
+    if digest := added.get(()):
+        yield {**asdict(change.basis), "digest": digest}
 
 
 def name_areas(session: Session, collection_id: int, named: Sequence[Area]) -> None:

@@ -6,7 +6,7 @@ import json
 from collections.abc import Mapping, Sequence
 from dataclasses import asdict
 
-from sqlalchemy import delete, insert, select, update
+from sqlalchemy import delete, insert, select, true, update
 from sqlalchemy.orm import Session
 from sqlalchemy.sql import ColumnElement
 
@@ -62,8 +62,10 @@ def find(session: Session, upload_id: int) -> Upload:
     return found[0]
 
 
-def listing(session: Session, collection: str) -> tuple[Upload, ...]:
-    """Uploads of a collection, newest first; their contents are not read."""
+def listing(session: Session, collection: str | None = None) -> tuple[Upload, ...]:
+    """Uploads of a collection, or of all, newest first; their contents are not read."""
+    if collection is None:
+        return _read(session, true())
     return _read(session, UploadRow.collection_id == collections.id_of(collection))
 
 

@@ -93,9 +93,9 @@ def population(table: list[Row], **mapping: object) -> Handed:
     return Handed("population", "population.csv", content, mapped)
 
 
-def births(number: int, *, areas: Iterable[str] = ("north", "south"), sex: str = "") -> Handed:
+def births(number: int, *, areas: Iterable[str] = ("north", "south"), sex: str = "p") -> Handed:
     """Live births of each year, of both sexes together or of one."""
-    lines = [f"{area},{year},{sex or 'p'},{number}" for area in areas for year in YEARS]
+    lines = [f"{area},{year},{sex},{number}" for area in areas for year in YEARS]
     content = "\n".join(["area,year,sex,births", *lines]).encode()
     mapping = Mapping(year="year", sex="sex", area="area", births="births")
     return Handed("births", "births.csv", content, mapping)
