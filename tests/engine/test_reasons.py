@@ -57,6 +57,13 @@ def test_too_large_an_open_group_hides_what_is_spread_over_it() -> None:
     assert only(ends_early, Reason.MODE_AT_EDGE, generous) == at_edge
 
 
+def test_the_share_that_may_reach_the_open_group_is_that_of_the_settings() -> None:
+    reach = float(run(SOUND, PLAIN).open_reach)
+    barely, too_much = (replace(PLAIN, open_share=reach * part) for part in (1.01, 0.99))
+    assert only(SOUND, Reason.NONE, barely) == set(INDICATORS)
+    assert only(SOUND, Reason.OPEN_GROUP_TOO_LARGE, too_much) == SPREAD
+
+
 def test_the_median_is_lost_in_an_open_group_that_half_reach() -> None:
     ends_early = SOUND.regroup(AgeGrid((0, 1, *range(5, 71, 5))))
     found = reasons(ends_early)
