@@ -10,6 +10,7 @@ from fastapi.exceptions import RequestValidationError
 from starlette.exceptions import HTTPException
 from starlette.types import ASGIApp, Receive, Scope, Send
 
+from seed_scenarios import quillmere
 from server.accounts.viewer import NotAllowed
 from server.charts.figure import figure
 from server.config import Config
@@ -74,6 +75,7 @@ def create_app(config: Config) -> FastAPI:
     )
     app.state.config = config
     app.state.sessions = sessions(engine)
+    app.state.demonstration = quillmere
     app.state.web = _web()
     app.mount("/static", Static(build().static), name="static")
     _health(app, lambda: schema_state(engine))

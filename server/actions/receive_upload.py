@@ -14,6 +14,8 @@ from server.store.records import Upload
 LARGEST = 60_000_000  # bytes of all files of an upload, where the caller sets no limit of its own
 LONGEST_NAME = 120
 
+File = tuple[str, str, bytes]  # role, name, content
+
 
 class FileTooLarge(Refused):
     """The files together are over the limit."""
@@ -23,7 +25,7 @@ def receive_upload(
     session: Session,
     *,
     collection: str,
-    files: Sequence[tuple[str, str, bytes]],
+    files: Sequence[File],
     by: Viewer,
     now: dt.datetime,
     limit: int = LARGEST,
@@ -34,6 +36,13 @@ def receive_upload(
     in, a role is unknown or two files have the same one.
     """
     by.require(Right.UPLOAD)
+    named = taken(files, limit=limit)
+    with transaction(session):
+        return uploads.receive(session, collection=collection, files=named, by=by.name, at=now)
+
+
+def taken(files: Sequence[File], *, limit: int) -> list[File]:
+    """Files that can be kept, under names that can be shown. Raises: FileTooLarge; Refused."""
     _require_roles([role for role, _, _ in files])
     size = sum(len(content) for _, _, content in files)
     if size > limit:
@@ -43,9 +52,7 @@ def receive_upload(
             size=size,
             limit=limit,
         )
-    named = [(role, _name(name) or f"{role}.csv", content) for role, name, content in files]
-    with transaction(session):
-        return uploads.receive(session, collection=collection, files=named, by=by.name, at=now)
+    return [(role, _name(name) or f"{role}.csv", content) for role, name, content in files]
 
 
 def _require_roles(roles: list[str]) -> None:

@@ -1,5 +1,13 @@
 """All address families; the application takes each of ROUTERS."""
 
-from server.routes import comparison, population_year, trend
+from server.routes import comparison, contents, methods, population_year, start, trend, uploads
 
-ROUTERS = (population_year.router, comparison.router, trend.router)
+ROUTERS = (
+    start.router,
+    contents.router,
+    population_year.router,
+    comparison.router,
+    trend.router,
+    uploads.router,
+    methods.router,
+)

@@ -4,12 +4,12 @@ from collections.abc import Sequence
 
 from server.sentences import names
 from server.sentences.numbers import whole
-from server.sentences.pieces import Sentence, phrase
-from server.sentences.text import _
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.text import _, n_
 
 
 def things(count: int) -> str:
-    """A small number in words."""
+    """A small number of things, in words."""
     words = (
         _("nothing"),
         _("one thing"),
@@ -27,19 +27,32 @@ def things(count: int) -> str:
 
 def answer(files: Sequence[str], errors: int, warnings: int) -> Sentence:
     """Whether an edition can be made, and what stands in the way."""
-    listed = names.listed(list(files))
+    values = {
+        "files": names.listed(list(files)),
+        "errors": things(errors),
+        "warnings": things(warnings),
+    }
     if errors and warnings:
-        text = _(
-            "{files} cannot become an edition yet: {errors} must be put right, and {warnings} "
-            "should be looked at again."
+        return phrase(
+            _(
+                "{files} cannot become an edition yet: {errors} must be put right, and {warnings} "
+                "should be looked at again."
+            ),
+            **values,
         )
-    elif errors:
-        text = _("{files} cannot become an edition yet: {errors} must be put right.")
-    elif warnings:
-        text = _("{files} can become an edition, but {warnings} should be looked at again.")
-    else:
-        text = _("{files} can become an edition: every check was passed.")
-    return phrase(text, files=listed, errors=things(errors), warnings=things(warnings))
+    if errors:
+        return phrase(
+            _("{files} cannot become an edition yet: {errors} must be put right."), **values
+        )
+    if warnings:
+        return phrase(
+            _("{files} can become an edition, but {warnings} should be looked at again."), **values
+        )
+    return phrase(_("{files} can become an edition: every check was passed."), **values)
+
+
+def became(files: Sequence[str], edition: Piece) -> Sentence:
+    return phrase(_("{files} became {edition}."), files=names.listed(list(files)), edition=edition)
 
 
 def outcome(errors: int, warnings: int, rows: int, sound: int) -> str:
@@ -54,7 +67,108 @@ def outcome(errors: int, warnings: int, rows: int, sound: int) -> str:
     )
 
 
-def read_rows(rows: int, sound: int) -> Sentence:
+def read_rows(rows: int, sound: int, standing: int) -> Sentence:
+    """What was read, and that nothing has happened to what stands (0: nothing does)."""
+    text = (
+        _("{rows} rows were read; {sound} are sound. Nothing has changed: {edition} stands.")
+        if standing
+        else _("{rows} rows were read; {sound} are sound. Nothing has been made of them yet.")
+    )
+    edition = _("edition {number}", number=standing)
+    return phrase(text, rows=whole(rows), sound=whole(sound), edition=edition)
+
+
+def holds(
+    *,
+    areas: Sequence[str],
+    sexes: Sequence[str],
+    periods: Sequence[str],
+    measures: Sequence[str],
+    grids: Sequence[Sequence[str]],
+    provisional: Sequence[str],
+    persons: bool,
+    whole_area: str,
+    delivered: Sequence[str],
+) -> tuple[tuple[str, str], ...]:
+    """What was understood, word and text, so that a slip in the reading is seen."""
+    kinds = {"deaths": _("deaths"), "person_years": _("person-years"), "births": _("births")}
+    facts = [
+        (_("Counts"), names.listed([kinds[one] for one in measures])),
+        (_("Areas"), names.listed(list(areas), most=12)),
+        (_("Sexes"), names.listed([names.sex(one) for one in sexes])),
+        (_("Years"), years(periods)),
+        (_("Ages"), "; ".join(ages(grid) for grid in grids) or _("none")),
+        (_("Provisional"), names.listed(list(provisional), most=12)),
+    ]
+    summed = [_("persons, of women and men")] if persons else []
+    summed += [_("{area}, of its parts", area=whole_area)] if whole_area else []
+    facts.append((_("Summed"), names.listed(summed)))
+    if delivered:
+        facts.append((_("As delivered"), names.listed(list(delivered), most=12)))
+    return tuple(facts)
+
+
+def years(periods: Sequence[str]) -> str:
+    if not periods:
+        return _("none")
+    if len(periods) == 1:
+        return periods[0]
+    return _("{count}, {first} to {last}", count=len(periods), first=periods[0], last=periods[-1])
+
+
+def ages(labels: Sequence[str]) -> str:
+    """One grid of age groups: its first ones, its last one and how many there are."""
+    return _(
+        "{first} ... {last} ({count} groups)",
+        first=", ".join(labels[:3]),
+        last=labels[-1],
+        count=len(labels),
+    )
+
+
+def state(*, edition: int | None, checked: bool, errors: int, warnings: int) -> str:
+    """Where an upload stands, in a table."""
+    if edition is not None:
+        return _("edition {number}", number=edition)
+    if not checked:
+        return _("draft, not checked")
+    if errors:
+        return _("draft, {things} to be put right", things=things(errors))
+    if warnings:
+        return _("draft, {things} to look at again", things=things(warnings))
+    return _("draft, sound")
+
+
+def drafts(count: int) -> Sentence:
+    """The answer of the list of uploads."""
+    if not count:
+        return phrase(_("No draft waits to become an edition."))
     return phrase(
-        _("{rows} rows were read; {sound} are sound."), rows=whole(rows), sound=whole(sound)
+        n_(
+            "One draft waits to become an edition.",
+            "{count} drafts wait to become editions.",
+            count,
+        )
+    )
+
+
+def why_not(errors: int, number: int) -> str:
+    """Beside the button that makes an edition."""
+    if errors:
+        return _(
+            "Edition {number} can be made once nothing stands under “Must be put right”.",
+            number=number,
+        )
+    return _(
+        "An edition never changes once it is made. It can be withdrawn, and a correction is a new "
+        "edition."
+    )
+
+
+def stale(checked: int, standing: int) -> Sentence:
+    """Another edition stands than when the checks ran (0: none did, or does)."""
+    return phrase(
+        _("The checks ran when {then} stood; now {now} stands. Check the files again below."),
+        then=_("edition {number}", number=checked) if checked else _("no edition"),
+        now=_("edition {number}", number=standing) if standing else _("no edition"),
     )

@@ -1,0 +1,173 @@
+"""What the checks of an upload found, and how it becomes an edition."""
+
+from dataclasses import dataclass
+from typing import ClassVar
+
+from server.exports.table import Column, Row, Table
+from server.intake.problems import Problem
+from server.intake.report import Report
+from server.pages.contents_tables import Listing
+from server.pages.page import Frame, Notice, Page
+from server.pages.upload import locator
+from server.sentences import methods, reading
+from server.sentences import uploads as say
+from server.sentences.numbers import whole
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.text import _
+from server.store import collections, editions, uploads
+from server.store.connect import Session
+from server.store.records import Upload
+
+
+@dataclass(frozen=True, slots=True)
+class Making:
+    """What the buttons of the page do."""
+
+    roles: reading.Options  # files that can be replaced
+    role: str  # the first with an error
+    button: str
+    possible: bool
+    why: str
+    note_needed: bool
+    may_replace: bool  # there is an edition whose content could be dropped
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class UploadProblemsPage(Page):
+    """Can this upload become an edition?"""
+
+    template: ClassVar[str] = "upload_problems/page.html"
+    place: str
+    errors: Listing
+    warnings: Listing
+    holds: tuple[tuple[str, str], ...]
+    making: Making | None  # None: it is an edition already
+
+
+def build(session: Session, upload_id: int) -> UploadProblemsPage:
+    """`upload_id` must have been checked."""
+    upload = uploads.find(session, upload_id)
+    report = Report.from_json(upload.report)
+    collection = collections.find(session, upload.collection)
+    standing = editions.newest_standing(session, collection.code)
+    number = standing.number if standing else 0
+    place = f"/uploads/{upload.id}"
+    return UploadProblemsPage(
+        frame=Frame(
+            title=_("What the checks found"),
+            address=f"{place}/problems",
+            locator=locator(upload, collection, _steps(upload)),
+            shown=_("Not an edition") if upload.edition is None else "",
+            nav="upload",
+            notices=_notices(upload, number),
+        ),
+        answer=_answer(upload, report),
+        lead=() if upload.edition else (say.read_rows(report.rows, report.sound, number),),
+        tables=(_table(report.problems),),
+        twins={twin: f"{place}/problems.{twin}" for twin in ("csv", "xlsx", "json")},
+        place=place,
+        errors=_listing("errors", _("Must be put right"), report.errors),
+        warnings=_listing("warnings", _("Wants a second look"), report.warnings),
+        holds=_holds(report),
+        making=None if upload.edition else _making(session, upload, report, number),
+    )
+
+
+def _steps(upload: Upload) -> Sentence:
+    if upload.edition is not None:
+        return phrase(_("what the checks found"))
+    return phrase(
+        _("what the checks found, {mapping}"),
+        mapping=Piece(_("how it is read"), f"/uploads/{upload.id}/reading"),
+    )
+
+
+def _answer(upload: Upload, report: Report) -> Sentence:
+    files = [file.name for file in upload.files]
+    if upload.edition is None:
+        return say.answer(files, len(report.errors), len(report.warnings))
+    edition = Piece(
+        _("edition {number}", number=upload.edition),
+        f"/c/{upload.collection}/{upload.edition}/contents",
+    )
+    return say.became(files, edition)
+
+
+def _notices(upload: Upload, standing: int) -> tuple[Notice, ...]:
+    """Another edition stands than at the time of the checks."""
+    if upload.edition is not None or upload.base == standing:
+        return ()
+    return (Notice(_("Check again"), say.stale(upload.base or 0, standing)),)
+
+
+def _listing(key: str, title: str, problems: tuple[Problem, ...]) -> Listing:
+    """Problems of one severity as printed."""
+    several = len({problem.file for problem in problems}) > 1
+    columns = (
+        *([Column("file", _("file"))] if several else []),
+        Column("row", _("row")),
+        Column("column", _("column")),
+        Column("found", _("found")),
+        Column("expected", _("expected")),
+        Column("remedy", _("what to do")),
+    )
+    rows = tuple(Row((*([one.file] if several else []), *_cells(one))) for one in problems)
+    return Listing((Table(key, title, columns, rows),) if rows else ())
+
+
+def _cells(problem: Problem) -> tuple[str, ...]:
+    words = problem.worded(_, whole)
+    rows = problem.rows_worded(_, whole)
+    return (rows or _("all"), problem.column, words.found, words.expected, words.remedy)
+
+
+def _table(problems: tuple[Problem, ...]) -> Table:
+    """All of them in one list, for the twins."""
+    return Table(
+        "problems",
+        _("What the checks found"),
+        (
+            Column("severity", _("severity")),
+            Column("file", _("file")),
+            Column("row", _("row")),
+            Column("column", _("column")),
+            Column("found", _("found")),
+            Column("expected", _("expected")),
+            Column("remedy", _("what to do")),
+            Column("check", _("check")),
+        ),
+        tuple(
+            Row((methods.severity(one.severity), one.file, *_cells(one), one.key))
+            for one in problems
+        ),
+    )
+
+
+def _holds(report: Report) -> tuple[tuple[str, str], ...]:
+    return say.holds(
+        areas=report.areas,
+        sexes=report.sexes,
+        periods=report.periods,
+        measures=report.measures,
+        grids=report.grids,
+        provisional=report.provisional,
+        persons=report.persons,
+        whole_area=report.whole,
+        delivered=report.delivered,
+    )
+
+
+def _making(session: Session, upload: Upload, report: Report, standing: int) -> Making:
+    all_ = editions.listing(session, upload.collection)
+    number = all_[0].number + 1 if all_ else 1
+    files = {file.name: file.role for file in upload.files}
+    first = report.errors[0].file if report.errors else ""
+    return Making(
+        roles=tuple((role, f"{reading.role(role)}: {name}") for name, role in files.items()),
+        role=files.get(first, next(iter(files.values()))),
+        button=_("Make edition {number}", number=number),
+        possible=not report.errors,
+        why=say.why_not(len(report.errors), number),
+        note_needed=bool(report.warnings),
+        may_replace=bool(standing),
+    )

@@ -1,0 +1,193 @@
+"""From files to an edition: /uploads, /uploads/new, /uploads/{upload} and its steps."""
+
+import datetime as dt
+from typing import Annotated
+
+from fastapi import APIRouter, Depends, Request, Response
+from starlette.datastructures import FormData, UploadFile
+
+from server.accounts.viewer import Right
+from server.actions.check_upload import check_upload
+from server.actions.commit_upload import commit_upload
+from server.actions.correct_upload import correct_upload
+from server.actions.create_collection import create_collection
+from server.actions.discard_upload import discard_upload
+from server.actions.map_upload import map_upload
+from server.actions.receive_upload import receive_upload
+from server.intake.mapping import ROLES
+from server.pages import upload as upload_page
+from server.pages import upload_new, upload_problems, upload_reading
+from server.pages import uploads as uploads_page
+from server.routes.asking import READ, Elsewhere, SessionDep, ViewerDep, needs
+from server.routes.plain import form as asked_form
+from server.routes.plain import keys
+from server.routes.reading_form import basis, mappings
+from server.store import uploads
+from server.web.problem import Refusal
+from server.web.render import redirect, render, respond
+
+router = APIRouter()
+MAY_READ = [needs(Right.READ)]
+MAY_UPLOAD = [needs(Right.UPLOAD)]
+
+
+async def read_form(request: Request) -> FormData:
+    """All fields of a form, files too."""
+    return await request.form()
+
+
+FormDep = Annotated[FormData, Depends(read_form)]
+
+
+@router.api_route("/uploads", methods=READ, dependencies=MAY_READ)
+def show_all(request: Request, session: SessionDep) -> Response:
+    keys(request)
+    return render(request, uploads_page.build(session))
+
+
+@router.api_route("/uploads/new", methods=READ, dependencies=MAY_READ)
+def choose(request: Request, session: SessionDep) -> Response:
+    chosen = keys(request, "collection").get("collection", "")
+    limit = request.app.state.config.upload_limit
+    return render(request, upload_new.build(session, chosen, limit=limit))
+
+
+@router.post("/uploads", dependencies=MAY_UPLOAD)
+def receive(request: Request, session: SessionDep, viewer: ViewerDep, form: FormDep) -> Response:
+    """Keep the files as a draft; a new collection is opened for them first."""
+    files = [(role, *found) for role in ROLES if (found := _file(form, role)) is not None]
+    if not files:
+        raise Refusal(
+            422,
+            "Not understood",
+            "No file was chosen. Go back and choose a file of deaths and one of population, or one "
+            "that holds both.",
+        )
+    now = dt.datetime.now(dt.UTC)
+    code = _text(form, "collection")
+    if not code:
+        code = create_collection(
+            session,
+            code=_text(form, "code"),
+            name=_text(form, "name"),
+            owner=_text(form, "owner"),
+            by=viewer,
+            now=now,
+        ).code
+    upload = receive_upload(
+        session, collection=code, files=files, by=viewer, now=now, limit=_limit(request)
+    )
+    return redirect(f"/uploads/{upload.id}/reading", status=303)
+
+
+@router.api_route("/uploads/{upload:int}", methods=READ, dependencies=MAY_READ)
+def show(request: Request, session: SessionDep, upload: int) -> Response:
+    keys(request)
+    return render(request, upload_page.build(session, upload))
+
+
+@router.api_route("/uploads/{upload:int}/reading", methods=READ, dependencies=MAY_READ)
+def show_reading(request: Request, session: SessionDep, upload: int) -> Response:
+    keys(request)
+    return render(request, upload_reading.build(session, upload))
+
+
+@router.post("/uploads/{upload:int}/reading", dependencies=MAY_UPLOAD)
+def correct_reading(session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep) -> Response:
+    """Fix how the files are read and what the counts are, and check them."""
+    roles = [file.role for file in uploads.find(session, upload).files]
+    texts = {key: value for key, value in form.items() if isinstance(value, str)}
+    map_upload(
+        session,
+        upload_id=upload,
+        mappings=mappings(texts, roles),
+        basis=basis(texts),
+        by=viewer,
+        now=dt.datetime.now(dt.UTC),
+    )
+    return check(session, upload)
+
+
+@router.post("/uploads/{upload:int}/check", dependencies=MAY_UPLOAD)
+def check(session: SessionDep, upload: int) -> Response:
+    check_upload(session, upload_id=upload)
+    return redirect(f"/uploads/{upload}/problems", status=303)
+
+
+@router.api_route("/uploads/{upload:int}/problems", methods=READ, dependencies=MAY_READ)
+@router.api_route("/uploads/{upload:int}/problems.{twin}", methods=READ, dependencies=MAY_READ)
+def show_problems(request: Request, session: SessionDep, upload: int, twin: str = "") -> Response:
+    given = keys(request, *(("table",) if twin == "csv" else ()))
+    found = uploads.find(session, upload)
+    if not found.report:
+        raise Elsewhere(f"/uploads/{upload}/reading")
+    page = upload_problems.build(session, upload)
+    if not twin:
+        return render(request, page)
+    return respond(
+        request,
+        lambda: page,
+        tag_parts=(found.report,),
+        form=asked_form(twin),
+        table=given.get("table", ""),
+    )
+
+
+@router.post("/uploads/{upload:int}/files", dependencies=MAY_UPLOAD)
+def correct_file(
+    request: Request, session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep
+) -> Response:
+    """A corrected file in place of one: a new draft, read and checked as the one before."""
+    found = _file(form, "file")
+    if found is None:
+        raise Refusal(
+            422, "Not understood", "No file was chosen. Go back and choose the corrected file."
+        )
+    new = correct_upload(
+        session,
+        upload_id=upload,
+        file=(_text(form, "role"), *found),
+        by=viewer,
+        now=dt.datetime.now(dt.UTC),
+        limit=_limit(request),
+    )
+    if new.basis is None:
+        return redirect(f"/uploads/{new.id}/reading", status=303)
+    return check(session, new.id)
+
+
+@router.post("/uploads/{upload:int}/commit", dependencies=[needs(Right.COMMIT)])
+def commit(session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep) -> Response:
+    edition = commit_upload(
+        session,
+        upload_id=upload,
+        note=_text(form, "note"),
+        by=viewer,
+        now=dt.datetime.now(dt.UTC),
+        replace=_text(form, "replace") == "yes",
+    )
+    collection = uploads.find(session, upload).collection
+    return redirect(f"/c/{collection}/{edition.number}/contents", status=303)
+
+
+@router.post("/uploads/{upload:int}/discard", dependencies=MAY_UPLOAD)
+def discard(session: SessionDep, viewer: ViewerDep, upload: int) -> Response:
+    discard_upload(session, upload_id=upload, by=viewer)
+    return redirect("/uploads", status=303)
+
+
+def _file(form: FormData, field: str) -> tuple[str, bytes] | None:
+    """Name and content; None where none was chosen: browsers send one without a name."""
+    value = form.get(field)
+    if not isinstance(value, UploadFile) or not value.filename:
+        return None
+    return value.filename, value.file.read()
+
+
+def _text(form: FormData, field: str) -> str:
+    value = form.get(field, "")
+    return value.strip() if isinstance(value, str) else ""
+
+
+def _limit(request: Request) -> int:
+    return int(request.app.state.config.upload_limit)

@@ -1,0 +1,107 @@
+"""What is said of a file's columns, and what is asked about its counts."""
+
+from server.sentences import names
+from server.sentences.numbers import whole
+from server.sentences.pieces import Sentence, phrase
+from server.sentences.text import _, n_
+
+Options = tuple[tuple[str, str], ...]  # value and label, for a form
+
+
+def role(code: str) -> str:
+    """What kind of file it is."""
+    return {
+        "counts": _("deaths and population"),
+        "deaths": _("deaths"),
+        "population": _("population"),
+        "births": _("births"),
+    }[code]
+
+
+def field(code: str) -> str:
+    """What a column can hold."""
+    return {
+        "year": _("year"),
+        "sex": _("sex"),
+        "age": _("age"),
+        "area": _("area, code"),
+        "area_name": _("area, name"),
+        "deaths": _("deaths"),
+        "population": _("population or person-years"),
+        "births": _("births"),
+        "status": _("provisional or final"),
+    }[code]
+
+
+def answer(files: int) -> Sentence:
+    return phrase(
+        n_(
+            "The file was read. Is each column what it is taken for, and how were the counts made?",
+            "{count} files were read. Is each column what it is taken for, and how were the counts "
+            "made?",
+            files,
+        )
+    )
+
+
+def file_line(code: str, name: str, rows: int, delimiter: str, encoding: str) -> str:
+    """One file: what it is, its name and how it is written."""
+    return _(
+        "{role}: {name}, {rows} rows, columns parted by {delimiter}, {encoding}",
+        role=role(code),
+        name=name,
+        rows=whole(rows),
+        delimiter=_(delimiter),
+        encoding=encoding,
+    )
+
+
+def confidence(level: str, why: str) -> str:
+    """How sure the recognition of a column is, and why."""
+    return {
+        "sure": _("sure: {why}", why=_(why)),
+        "likely": _("likely: {why}", why=_(why)),
+        "not used": _("not used: {why}", why=_(why)),
+        "kept": _("as stated before"),
+    }[level]
+
+
+def not_found() -> str:
+    return _("no column found")
+
+
+def unused(columns: list[tuple[str, str]]) -> str:
+    """Columns that are not used, with the reasons; empty where all are."""
+    if not columns:
+        return ""
+    listed = "; ".join(_("{column} ({why})", column=column, why=_(why)) for column, why in columns)
+    return _("Not used: {columns}.", columns=listed)
+
+
+def people() -> Options:
+    return (
+        ("residents", _("those who live in the area, wherever they died")),
+        ("occurrences", _("those who died in the area, wherever they lived")),
+    )
+
+
+def dated_by() -> Options:
+    return (
+        ("death", _("the day of death")),
+        ("registration", _("the day of registration")),
+    )
+
+
+def population() -> Options:
+    return (
+        ("", _("choose")),
+        ("midyear", _("people in the middle of the year")),
+        ("person_years", _("person-years lived in the year")),
+    )
+
+
+def sexes() -> Options:
+    return (
+        ("", _("a column says it")),
+        *((code, names.sex(code)) for code in ("f", "m", "p")),
+    )
