@@ -80,7 +80,7 @@ def _curve(
     table, other = side.table, (found.that if side is found.this else found.this).table
     starts = np.array(table.grid.starts, float)
     inside = starts <= top
-    upper = bool(table.ex[0] >= other.ex[0]) == (side is found.this) or table.ex[0] > other.ex[0]
+    upper = table.ex[0] > other.ex[0] or (table.ex[0] == other.ex[0] and side is found.this)
     age = 82.0 if upper else 62.0
     height = RADIX * at_age(table.grid, table.lx, age)
     at = (

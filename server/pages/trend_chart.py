@@ -46,7 +46,11 @@ def draw(found: Series, finding: str, source: str) -> Chart | None:
         x_range=_span(found),
         y_title=unit
         if bottom == 0
-        else _("{unit} (scale begins at {start})", unit=unit, start=number(bottom, decimals)),
+        else _(
+            "{unit} (scale begins at {start})",
+            unit=unit,
+            start=number(bottom, 0 if bottom == round(bottom) else decimals),
+        ),
         y_range=(bottom, high + room),
         y_ticks=shown,
         hover=f"%{{customdata}}: %{{y:,.{decimals}f}}",
