@@ -68,6 +68,8 @@ class Mapping:
                     f"{name!r} is no field of a mapping; the fields are {', '.join(known)}"
                 )
             if isinstance(known[name], tuple):
+                if not isinstance(value, list):
+                    raise ValueError(f"mapping field {name} is {value!r}; expected a list")
                 stored[name] = tuple(
                     tuple(part) if isinstance(part, list) else part for part in value
                 )
