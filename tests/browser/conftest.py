@@ -60,7 +60,7 @@ def demo_site(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Site]:
 def empty_site(tmp_path: Path) -> Iterator[Site]:
     """A site on an empty database, for one test."""
     site = Site(tmp_path)
-    made = site.command("database", "make")
+    made = site.command("database")
     assert made.returncode == 0, made.stdout + made.stderr
     site.start()
     yield site
