@@ -10,6 +10,7 @@ from server.pages import frames
 from server.pages import population_year_living as living
 from server.pages import population_year_rates as rates
 from server.pages import population_year_tables as tables
+from server.pages.choices import Offer, offer
 from server.pages.page import Caution, Frame, Page
 from server.results.population_year import Findings, population_year
 from server.results.questions import (
@@ -28,7 +29,6 @@ from server.sentences.text import _
 from server.store.connect import Session
 from server.store.heading import Heading
 
-Options = tuple[tuple[str, str], ...]  # value and label, for a form
 LAW = "almanac-1-kannisto"  # what to ask for where the open group is too large
 
 
@@ -38,9 +38,7 @@ class Choice:
 
     action: str
     of: PopulationYear
-    areas: Options
-    sexes: Options
-    periods: Options
+    offer: Offer
     figures: str
     settings: str
 
@@ -227,9 +225,7 @@ def _choice(found: Findings) -> Choice:
     return Choice(
         action=f"/c/{heading.collection.code}/{heading.edition.number}/{found.question.view}",
         of=found.of,
-        areas=tuple((area.code, area.name or area.code) for area in held.areas),
-        sexes=tuple((sex, names.sex(sex)) for sex in ("f", "m", "p") if sex in held.sexes),
-        periods=tuple((period, period) for period in reversed(held.periods)),
+        offer=offer(held),
         figures=found.question.figures,
         settings=found.question.settings,
     )

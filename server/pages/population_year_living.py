@@ -141,7 +141,7 @@ def _marks(found: Findings) -> Iterable[Mark]:
 
 def _first_year(grid: AgeGrid, density: Array, highest: float) -> tuple[Note, ...]:
     """The first year's bar is named where its neighbours are too low to show."""
-    below = [value for start, value in zip(grid.starts, density, strict=False) if 0 < start < 40]
+    below = [float(d) for start, d in zip(grid.starts, density, strict=False) if 0 < start < 40]
     if grid.starts[1:2] != (1,) or not density[0] > 3 * max(below, default=0):
         return ()
     text = _("{count} in the first year", count=whole(float(density[0])))
