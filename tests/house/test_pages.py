@@ -22,7 +22,7 @@ from tests.house.crawl import read, walk
 pytestmark = pytest.mark.house
 
 NOW = dt.datetime(2026, 12, 1, 9, tzinfo=dt.UTC)
-STARTS = ("/", "/collections", "/methods", "/words", "/upload", "/uploads", "/nothing-here")
+STARTS = ("/", "/collections", "/methods", "/words", "/uploads", "/nothing-here")
 NAMES = {"Ebbline", "csv", "xlsx", "json", "CSV", "XLSX", "JSON", "SHA", "UTC", "ISO"}
 SYMBOLS = {"edagger", "median", "mode", "almanac", "ageing_rate"}  # keys, as in addresses
 
