@@ -25,7 +25,7 @@ from server.store.heading import Heading
 T = TypeVar("T")
 
 MOST = 5_000  # population-years a question may ask for
-MOST_SIMULATED = 500  # where every one is simulated some hundred times
+MOST_SIMULATED = 200  # where every one is simulated some hundred times: about ten seconds
 
 
 class TooLarge(ValueError):
