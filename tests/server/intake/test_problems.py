@@ -1,0 +1,60 @@
+"""A problem in words."""
+
+import json
+
+from server.intake.checks import KINDS
+from server.intake.checks.check import LISTED, listed
+from server.intake.problems import Fault, Problem
+from server.sentences.text import _, speaking
+
+
+def problem(**fault: object) -> Problem:
+    return Problem.of(KINDS["unknown_sex"], Fault(**fault), "a.csv")  # type: ignore[arg-type]
+
+
+THREE = {"column": "sex", "row": 1_200, "last_row": 1_202, "rows": 3, "values": {"text": "x"}}
+
+
+def test_it_says_where_what_and_what_to_do() -> None:
+    assert str(problem(**THREE)) == (
+        "a.csv, rows 1200 to 1202, column sex: found “x”, expected f, m or p (female, male, "
+        "persons). Give one row for each sex, or say in the mapping what the code means."
+    )
+
+
+def test_numbers_are_shown_as_the_page_shows_them() -> None:
+    assert problem(**THREE).rows_worded(show=lambda n: f"{n:,}") == "rows 1,200 to 1,202"
+
+
+def test_every_word_but_the_users_own_passes_through_the_catalogue() -> None:
+    with speaking("pseudo"):
+        words = problem(**THREE).worded(_)
+        assert words.found == "⟦“x”⟧"
+        assert words.expected.startswith("⟦f, m or p")
+        assert words.remedy.endswith("⟧")
+        assert problem(**THREE).rows_worded(_) == "⟦rows 1200 to 1202⟧"
+        assert problem(others=4, values={"text": "x"}).worded(_).found.startswith("⟦⟦“x”⟧ and 4")
+
+
+def test_texts_of_users_are_never_filled_in_twice() -> None:
+    odd = problem(values={"text": "{rows} {0} %s"})
+    assert odd.found == "“{rows} {0} %s”"
+    assert "“{rows} {0} %s”" in str(odd)
+
+
+def test_it_survives_its_text() -> None:
+    one = problem(**THREE, others=7)
+    assert Problem.from_json(json.loads(json.dumps(one.to_json()))) == one
+
+
+def test_an_old_report_reads_the_same_when_a_check_is_gone() -> None:
+    stored = problem(**THREE).to_json() | {"key": "a_check_of_old"}
+    assert str(Problem.from_json(stored)) == str(problem(**THREE))
+
+
+def test_what_goes_beyond_the_list_is_counted() -> None:
+    faults = [Fault(row=row, rows=2, last_row=row + 1) for row in range(2, 102, 2)]
+    kept = listed(faults)
+    assert kept[:LISTED] == faults[:LISTED]
+    assert kept[LISTED] == Fault(row=42, last_row=101, rows=60, others=29)
+    assert listed(faults[: LISTED + 1]) == faults[: LISTED + 1]
