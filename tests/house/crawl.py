@@ -19,7 +19,8 @@ READ_ALOUD = {"alt", "aria-label", "aria-description", "placeholder", "title", "
 class Read:
     """What a page says to people, and where its links lead."""
 
-    texts: list[str] = field(default_factory=list)
+    running: list[str] = field(default_factory=list)  # text between tags, in order
+    texts: list[str] = field(default_factory=list)  # each for itself: read aloud, drawn
     links: list[str] = field(default_factory=list)
 
 
@@ -45,7 +46,7 @@ class _Reader(HTMLParser):
         if self._inside == "json":
             self.read.texts += _drawn(orjson.loads(data))
         elif self._inside not in ("script", "style"):
-            self.read.texts.append(data)
+            self.read.running.append(data)
 
 
 def _drawn(value: Any, key: str = "") -> Iterator[str]:
