@@ -12,7 +12,9 @@ from server.store.records import Collection
 
 def find(session: Session, code: str) -> Collection:
     """The collection of this code. Raises: Missing, with the codes there are."""
-    row = session.execute(_columns().where(tables.Collection.code == code)).one_or_none()
+    which = _columns().where(tables.Collection.code == code)
+    # no code has a zero character, and PostgreSQL refuses even to look for one
+    row = session.execute(which).one_or_none() if "\0" not in code else None
     if row is None:
         raise Missing("collection", code, [one.code for one in all_collections(session)])
     return Collection(*row)

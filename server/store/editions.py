@@ -12,7 +12,7 @@ from sqlalchemy.orm import Session, aliased
 from server.store import collections, digests, ranges, rows
 from server.store.errors import Missing, Refused, Stale
 from server.store.records import Basis, Change, Collection, Edition, Event
-from server.store.tables import AreaRange, BasisRange, EditionEvent, Schedule
+from server.store.tables import LARGEST, AreaRange, BasisRange, EditionEvent, Schedule
 from server.store.tables import Edition as EditionRow
 
 
@@ -36,6 +36,8 @@ class Prepared:
 
 def find(session: Session, collection: str, number: int) -> Edition | None:
     """One edition with its events, or None. One statement."""
+    if not 0 < number <= LARGEST:
+        return None
     found = _read(session, collection, EditionRow.number == number)
     return found[0] if found else None
 

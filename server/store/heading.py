@@ -9,7 +9,7 @@ from server.store import collections, editions
 from server.store.errors import Missing
 from server.store.records import Collection as CollectionRecord
 from server.store.records import Edition as EditionRecord
-from server.store.tables import BasisRange, Collection, Edition, EditionEvent
+from server.store.tables import LARGEST, BasisRange, Collection, Edition, EditionEvent
 
 
 @dataclass(frozen=True, slots=True)
@@ -24,7 +24,7 @@ def heading(session: Session, collection_code: str, number: int) -> Heading:
 
     Raises: Missing, for the collection or the edition, with those there are.
     """
-    rows = session.execute(
+    statement = (
         select(
             Collection.id.label("collection_id"),
             Collection.code,
@@ -38,13 +38,14 @@ def heading(session: Session, collection_code: str, number: int) -> Heading:
         .outerjoin(BasisRange, editions.ITS_BASIS)
         .outerjoin(EditionEvent, editions.ITS_EVENTS)
         .where(Collection.code == collection_code)
-    ).all()
-    if not rows:
-        collections.find(session, collection_code)  # raises, with the codes there are
-    row = rows[0]
-    if row.number is None:
+    )
+    possible = 0 < number <= LARGEST and "\0" not in collection_code
+    rows = session.execute(statement).all() if possible else []
+    if not rows or rows[0].number is None:
+        collections.find(session, collection_code)  # raises where that is what is missing
         known = [one.number for one in editions.listing(session, collection_code)]
         raise Missing("edition", number, known)
+    row = rows[0]
     return Heading(
         CollectionRecord(row.collection_id, row.code, row.name, row.owner, row.revision),
         editions.of_rows(rows)[0],

@@ -41,6 +41,9 @@ NAMES = {
 }
 
 
+LARGEST = 2**31 - 1  # of an integer column; PostgreSQL refuses even to look for a larger number
+
+
 class Utc(TypeDecorator[dt.datetime]):
     """A moment in UTC, aware on both databases (SQLite forgets the zone). Refuses a naive one."""
 

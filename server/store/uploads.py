@@ -13,7 +13,7 @@ from sqlalchemy.sql import ColumnElement
 from server.store import collections
 from server.store.errors import Missing, Refused
 from server.store.records import Basis, Upload, UploadFile
-from server.store.tables import Collection, Edition
+from server.store.tables import LARGEST, Collection, Edition
 from server.store.tables import Upload as UploadRow
 from server.store.tables import UploadFile as FileRow
 
@@ -56,7 +56,7 @@ def receive(
 
 def find(session: Session, upload_id: int) -> Upload:
     """Raises: Missing."""
-    found = _read(session, UploadRow.id == upload_id)
+    found = _read(session, UploadRow.id == upload_id) if 0 < upload_id <= LARGEST else ()
     if not found:
         raise Missing("upload", upload_id)
     return found[0]

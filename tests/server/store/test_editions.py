@@ -10,7 +10,7 @@ from sqlalchemy import Engine, text
 from sqlalchemy.exc import IntegrityError
 from sqlalchemy.orm import Session
 
-from server.store import areas, collections, editions, schedules
+from server.store import areas, collections, editions, schedules, uploads
 from server.store.connect import transaction
 from server.store.errors import Missing, Refused, Stale, Taken
 from server.store.heading import heading
@@ -198,6 +198,24 @@ def test_what_is_not_there_is_named_with_what_is(session: Session) -> None:
         heading(session, "saltmarsh", 2)
     with pytest.raises(Taken, match="There is a collection saltmarsh already"):
         stored_collection(session)
+
+
+@pytest.mark.parametrize("number", [0, -1, 2**31, 2**70])
+def test_a_number_that_no_edition_can_have_is_missing(session: Session, number: int) -> None:
+    stored_edition(session, cells())
+    with pytest.raises(Missing, match=f"There is no edition {number}; known: 1"):
+        heading(session, "saltmarsh", number)
+    assert editions.find(session, "saltmarsh", number) is None
+    with pytest.raises(Missing, match=rf"There is no upload {number}\.$"):
+        uploads.find(session, number)
+
+
+def test_a_code_that_no_collection_can_have_is_missing(session: Session) -> None:
+    for code in ("salt\0marsh", "\0", "é" * 400, ""):
+        with pytest.raises(Missing, match="known: saltmarsh"):
+            heading(session, code, 1)
+        with pytest.raises(Missing, match="known: saltmarsh"):
+            collections.find(session, code)
 
 
 def test_collections_do_not_see_each_other(session: Session) -> None:
