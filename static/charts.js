@@ -67,23 +67,26 @@
         if ((out.at(-1) + word).length > most) out.push(word);
         else out.push(`${out.pop()} ${word}`.trim());
       }
-      return out.join("<br>").replaceAll("&", "&amp;");
+      return out.map(line => line.replaceAll("&", "&amp;").replaceAll("<", "&lt;"));
     };
+    const finding = lines(".finding", 84), unit = lines(".unit", 130), source = lines(".foot > span", 140);
+    const overUnit = 44 + 18 * unit.length, added = overUnit + 26 * finding.length + 12 - margin.t;
+    const under = 18 * source.length + 22;
+    Object.assign(margin, { t: margin.t + added, b: below + under, l: margin.l + 18, r: margin.r + 12 });
     for (const note of layout.annotations) {
-      const isUnit = note.xref === "paper" && note.x === 0 && note.yref === "paper" && note.y === 1;
-      if (isUnit) Object.assign(note, { yshift: 14, xshift: 16 - margin.l });
+      const isScale = note.xref === "paper" && note.x === 0 && note.yref === "paper" && note.y === 1;
+      if (isScale) Object.assign(note, { yshift: 14, xshift: 16 - margin.l });
     }
     const write = (text, y, yanchor, yshift, font) => layout.annotations.push({
-      text, x: 0, xref: "paper", xanchor: "left", xshift: 16 - margin.l,
+      text: text.join("<br>"), x: 0, xref: "paper", xanchor: "left", xshift: 16 - margin.l,
       y, yref: "paper", yanchor, yshift, showarrow: false, align: "left", font,
     });
-    margin.t += 100; margin.b += 40; margin.l += 18; margin.r += 12;
-    write(lines(".finding", 84), 1, "bottom", 60, { family: "Vollkorn Ebb, Georgia, serif", size: 20, color: "@ink" });
-    write(lines(".unit", 130), 1, "bottom", 36, { size: 14, color: "@ink-2" });
-    write(lines(".foot > span", 140), 0, "top", -below - 4, { size: 13, color: "@ink-2" });
+    write(finding, 1, "bottom", overUnit, { family: "Vollkorn Ebb, Georgia, serif", size: 20, color: "@ink" });
+    write(unit, 1, "bottom", 38, { size: 14, color: "@ink-2" });
+    write(source, 0, "top", -below - 4, { size: 13, color: "@ink-2" });
     layout.paper_bgcolor = "@ground";
     const whole = inked({ data: figure.data, layout }, "paper");
-    const size = { width: 942, height: box.clientHeight + 140 };
+    const size = { width: 942, height: box.clientHeight + added + under };
     return Plotly.downloadImage({ ...whole, config: CONFIG }, { format: "svg", filename: "ebbline-" + box.dataset.chart, ...size });
   }
 
