@@ -33,7 +33,7 @@ GRIDS = {
 def gompertz_rates(
     grid: AgeGrid,
     *,
-    level: ArrayLike = 3e-5,
+    level: ArrayLike = 2e-5,
     slope: ArrayLike = 0.1,
     infant: ArrayLike = 0.005,
     accidents: ArrayLike = 2e-4,
@@ -73,7 +73,7 @@ def gompertz_panel(
 
 def persons_panel(grid: AgeGrid = GRIDS["abridged"], *, seed: int | None = None) -> Panel:
     """Women and men together, men with the higher rates."""
-    women = gompertz_panel(grid, sex="f", seed=seed, level=2e-5, infant=0.004)
+    women = gompertz_panel(grid, sex="f", seed=seed, level=1.5e-5, infant=0.004)
     men = gompertz_panel(grid, sex="m", seed=None if seed is None else seed + 1, infant=0.006)
     return Panel.persons(women, men)
 
@@ -95,7 +95,7 @@ def panels(draw: st.DrawFn, batch: int = 4) -> Panel:
         sex=draw(st.sampled_from(("f", "m", "p"))),
         seed=draw(st.integers(0, 2**31)),
         slope=slope,
-        level=0.1 / np.exp(82 * slope),
+        level=0.1 / np.exp(86 * slope),
         infant=0.002 + 0.15 * draw(shares),
     )
 

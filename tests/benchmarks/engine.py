@@ -25,7 +25,7 @@ E0, MODE = INDICATORS["e0"], INDICATORS["mode"]
 
 def populations(grid: str, count: int) -> Panel:
     slopes = np.linspace(0.085, 0.11, count)
-    level = 0.1 / np.exp(82 * slopes)
+    level = 0.1 / np.exp(86 * slopes)
     return gompertz_panel(GRIDS[grid], seed=1, slope=slopes, level=level, people=2e6)
 
 

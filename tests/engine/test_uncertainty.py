@@ -94,7 +94,7 @@ def test_shared_deaths_narrow_a_simulated_difference_as_they_narrow_a_delta_one(
 
 def test_simulated_limits_do_not_depend_on_how_they_are_cut_into_blocks() -> None:
     slopes = np.linspace(0.09, 0.11, 9)
-    panel = gompertz_panel(seed=1, slope=slopes, level=0.1 / np.exp(82 * slopes))
+    panel = gompertz_panel(seed=1, slope=slopes, level=0.1 / np.exp(86 * slopes))
     many = replace(SETTINGS_1, draws=900)  # two populations to a block
     together = estimate(MEDIAN, panel, many, streams=codes(panel))
     alone = [estimate(MEDIAN, panel[i], many, streams=codes(panel)[i]) for i in range(9)]

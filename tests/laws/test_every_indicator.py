@@ -31,7 +31,7 @@ PARTS = [field.name for field in fields(Estimate)]
 def some(grid: str = "abridged", *, people: float = 4_000_000) -> Panel:
     slopes = np.linspace(0.085, 0.11, 7)
     return gompertz_panel(
-        GRIDS[grid], seed=8, slope=slopes, level=0.1 / np.exp(82 * slopes), people=people
+        GRIDS[grid], seed=8, slope=slopes, level=0.1 / np.exp(86 * slopes), people=people
     )
 
 
@@ -77,7 +77,7 @@ def test_a_split_of_many_populations_changes_no_bit(
     indicator: Indicator, settings: Settings
 ) -> None:
     slopes = np.linspace(0.08, 0.11, 120)
-    panel = gompertz_panel(seed=1, slope=slopes, level=0.1 / np.exp(82 * slopes), people=60_000)
+    panel = gompertz_panel(seed=1, slope=slopes, level=0.1 / np.exp(86 * slopes), people=60_000)
     streams = codes(panel)
     together = estimate(indicator, panel, settings, streams=streams)
     for where in (slice(0, 49), slice(49, 51), slice(51, 120), slice(1, None, 7)):
