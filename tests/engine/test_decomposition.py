@@ -123,7 +123,7 @@ def test_nothing_remains_between_populations_of_one_sex(name: str, indicator: Re
     found = contributions(indicator, pair.this, same_years, PLAIN)
     value = [indicator.value(run(panel, PLAIN)) for panel in (pair.this, same_years)]
     assert found.difference == value[0] - value[1]
-    assert abs(found.remainder) <= 1e-9 * scale(found)
+    assert abs(found.remainder) <= 1e-9 * scale(found) + 1e-17  # where the number is untouched
     assert found.by_age.sum() + found.remainder == pytest.approx(found.difference, rel=1e-12)
 
 
@@ -135,7 +135,7 @@ def test_nothing_remains_between_very_unlike_populations(grid: AgeGrid) -> None:
     that.deaths[-1] *= 3
     found = contributions(INDICATORS["e0"], this, that, PLAIN)
     assert found.difference > 40
-    assert abs(found.remainder) <= 1e-9 * scale(found)
+    assert abs(found.remainder) <= 1e-9 * scale(found) + 1e-17  # where the number is untouched
 
 
 @pytest.mark.fast
