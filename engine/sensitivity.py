@@ -3,10 +3,8 @@
 import numpy as np
 
 from engine.ages import Array
-from engine.chain import Reading, gradient, run
-from engine.panel import Panel
-from engine.settings import Settings
-from engine.tables import LifeTable
+from engine.chain import Chain, Reading
+from engine.tables import LifeTable, Partials, pull
 
 ONE_PERCENT = 0.01
 
@@ -27,17 +25,22 @@ def of_survival(table: LifeTable) -> Array:
     return lx * years_left + (table.grid.widths[:-1] - table.ax[..., :-1]) * lx
 
 
-def gain_per_percent(indicator: Reading, panel: Panel, settings: Settings) -> Array:
-    """What the indicator gains if the death rate of one age group were 1 % lower, in its unit.
+def gain_per_percent(indicator: Reading, chain: Chain) -> Array:
+    """What the indicator gains if the death rate at one age of the table were 1 % lower, in its
+    unit.
 
-    First order: -0.01 mx d indicator / d mx, through the whole chain. Divide by the group's width
-    for a figure per year of age.
+    First order: -0.01 mx d indicator / d mx, ax following its rule. The rate is lowered at that age
+    alone: groups joined for want of person-years, and the ages of a fitted law, each for itself.
+    Divide by the group's width for a figure per year of age.
 
-    Shape:   panel [..., age] -> [..., age].
+    Shape:   chain [...] -> [..., age] on the grid of its table.
     Missing: nan where the indicator or its gradient is.
-    Raises:  ValueError where the indicator has no derivative.
+    Raises:  ValueError where the indicator has no derivative, or is not read off the table.
     """
-    chain = run(panel, settings)
-    slopes = gradient(indicator, chain)
+    partials = indicator.partials(chain)
+    if not isinstance(partials, Partials):
+        raise ValueError(f"{indicator.label} is read off the rates as counted, not off the table")
+    slopes = pull(chain.table, partials)
     with np.errstate(all="ignore"):
-        return np.asarray(-ONE_PERCENT * chain.rates.mx * slopes)
+        by_rate = slopes.mx + chain.separation.pull(slopes.ax)
+        return np.asarray(-ONE_PERCENT * chain.table.mx * by_rate)

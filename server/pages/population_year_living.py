@@ -73,14 +73,9 @@ def survivors(found: Findings, source: str) -> Chart | None:
 def deaths(found: Findings, source: str) -> Chart | None:
     if not found.readable:
         return None
-    table, top = found.chain.table, axis(found)[1]
-    grid, counted = table.grid, counted_groups(found)
-    density = RADIX * table.dx[:-1] / grid.widths[:-1]
+    grid = found.chain.table.grid
+    density = RADIX * found.chain.table.dx[:-1] / grid.widths[:-1]
     highest = float(np.nanmax(density)) if np.isfinite(density).any() else 1.0
-    series = [bars(grid, density, range(min(counted, len(density))), who(found))]
-    if found.chain.modelled:
-        beyond = [at for at in range(counted, len(density)) if grid.starts[at] < top]
-        series.append(bars(grid, density, beyond, _("fitted law"), role="s2"))
     return Chart(
         key="deaths",
         finding=say.deaths(found.estimates),
@@ -99,7 +94,7 @@ def deaths(found: Findings, source: str) -> Chart | None:
         y_text=tuple(whole(at) for at in ticks(0, highest)),
         hover=_("age %{customdata}: %{y:,.0f} deaths"),
         table="life",
-        series=tuple(series),
+        series=columns(found, density),
         marks=tuple(_marks(found)),
         marks_top=1.1 * highest,
         notes=_first_year(grid, density, highest),
@@ -107,24 +102,36 @@ def deaths(found: Findings, source: str) -> Chart | None:
 
 
 def _deaths_unit(found: Findings) -> str:
-    grid = found.chain.table.grid
     text = (
         _("Deaths at each single year of age, of 100,000 born")
-        if single_years(grid)
+        if single_years(found.chain.table.grid)
         else _("Deaths per year of age in each age group, of 100,000 born")
     )
-    last = float(found.chain.table.dx[-1])
+    last = RADIX * float(found.chain.table.dx[-1])
+    return beyond(found, text, whole(last) if math.isfinite(last) else "")
+
+
+def beyond(found: Findings, text: str, last: str) -> str:
+    """A unit line, with what is drawn, or not, of the open group."""
+    age = found.loaded.panel.grid.open_age
     if found.chain.modelled:
-        age = found.loaded.panel.grid.open_age
         return _("{text}; from {age} on single years by the fitted law", text=text, age=age)
-    if not math.isfinite(last):
+    if not last:
         return text
     return _(
-        "{text}; the {count} at {age} and over are not drawn",
-        text=text,
-        count=whole(RADIX * last),
-        age=grid.open_age,
+        "{text}; the {amount} at {age} and over are not drawn", text=text, amount=last, age=age
     )
+
+
+def columns(found: Findings, density: Array) -> tuple[Series, ...]:
+    """Values of the closed groups; the ages of a law stand apart."""
+    grid, counted = found.chain.table.grid, counted_groups(found)
+    own = bars(grid, density, range(min(counted, len(density))), who(found))
+    if not found.chain.modelled:
+        return (own,)
+    top = axis(found)[1]
+    ages_of_law = [at for at in range(counted, len(density)) if grid.starts[at] < top]
+    return own, bars(grid, density, ages_of_law, _("fitted law"), role="s2")
 
 
 def _marks(found: Findings) -> Iterable[Mark]:

@@ -8,8 +8,8 @@ import numpy as np
 from engine.ages import AgeGrid, Array
 from server.charts.chart import At, Chart, Note, Series
 from server.charts.scales import log_ticks, ticks
-from server.pages.drawing import at_age, bars, isolated, places, single_years, values
-from server.pages.population_year_living import axis, who
+from server.pages.drawing import at_age, isolated, places, single_years, values
+from server.pages.population_year_living import axis, beyond, columns, who
 from server.pages.population_year_tables import DAYS, counted_groups
 from server.results.population_year import Findings, finite
 from server.sentences import population_year as say
@@ -48,16 +48,16 @@ def rates(found: Findings, source: str) -> Chart | None:
             )
         )
     if found.chain.modelled:
-        beyond = np.flatnonzero(inside & (np.arange(len(inside)) >= counted))
+        of_law = np.flatnonzero(inside & (np.arange(len(inside)) >= counted))
         series.append(
             Series(
                 _("fitted law"),
-                places(grid.mids[beyond]),
-                values(per_thousand[beyond]),
+                places(grid.mids[of_law]),
+                values(per_thousand[of_law]),
                 sex="p",
                 role="s2",
                 weight="that",
-                names=tuple(grid.labels[at] for at in beyond),
+                names=tuple(grid.labels[at] for at in of_law),
                 at=At(103, 0.25 * at_age(grid, per_thousand, 103), "center"),
             )
         )
@@ -150,7 +150,7 @@ def rise(found: Findings, source: str) -> Chart | None:
 def gain(found: Findings, source: str) -> Chart | None:
     if not found.gainful:
         return None
-    grid, days = found.loaded.panel.grid, DAYS * found.gain
+    grid, days = found.chain.table.grid, DAYS * found.gain
     density = days[:-1] / grid.widths[:-1]
     highest = float(density.max())
     shown = ticks(0, 1.2 * highest)
@@ -169,12 +169,7 @@ def gain(found: Findings, source: str) -> Chart | None:
     return Chart(
         key="gain",
         finding=say.gain(span, share),
-        unit=_(
-            "{text}; the {days} days at {age} and over are not drawn",
-            text=unit,
-            days=number(float(days[-1]), 1),
-            age=grid.open_age,
-        ),
+        unit=beyond(found, unit, _("{days} days", days=number(float(days[-1]), 1))),
         source=source,
         described=_(
             "Days of life expectancy gained by lower death rates, by age, {who}; the numbers are in"
@@ -189,7 +184,7 @@ def gain(found: Findings, source: str) -> Chart | None:
         y_ticks=shown,
         hover=_("age %{customdata}: %{y:.2f} days"),
         table="gain",
-        series=(bars(grid, density, range(len(density)), who(found)),),
+        series=columns(found, density),
         notes=(
             Note(
                 _("all ages together: {days} days", days=number(float(days.sum()), 1)),

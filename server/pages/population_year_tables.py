@@ -159,13 +159,14 @@ def rises(found: Findings) -> Table:
 
 def gains(found: Findings) -> Table:
     """Days of life expectancy for 1 % lower rates, by age group and per year of age in it."""
-    grid = found.loaded.panel.grid
+    grid = found.chain.table.grid
     days = DAYS * found.gain
+    no_end = _("The group has no end.")
     rows = [
-        Row((label, number(gain), number(gain / width) if np.isfinite(width) else _open()))
+        Row((label, number(gain), number(gain / width if np.isfinite(width) else np.nan, no_end)))
         for label, gain, width in zip(grid.labels, days, grid.widths, strict=True)
     ]
-    total = Row((_("all ages"), number(days.sum()), _open()))
+    total = Row((_("all ages"), number(days.sum()), ""))
     heads = (
         Column("age", _("age")),
         Column("days", _("days"), _("for the group"), 2),
@@ -178,7 +179,3 @@ def gains(found: Findings) -> Table:
         tuple(rows),
         total=total,
     )
-
-
-def _open() -> Gap:
-    return Gap(GapKind.UNDEFINED, _("The group has no end."))

@@ -43,7 +43,7 @@ class Findings:
     estimates: dict[str, Estimate]
     before: Before | None  # None where the edition lacks the year before
     rises: ageing.Rises
-    gain: Array  # years of life expectancy at birth for 1 % lower rates, by age group
+    gain: Array  # years of life expectancy at birth for 1 % lower rates, by age of the table
     moved: Moved | None
 
     @property
@@ -78,17 +78,18 @@ def population_year(
     wanted = [question.of, *([previous] if previous else [])]
     loaded = load(session, collection, number, wanted)
     panel = loaded[question.of].panel
+    chain = run(panel, settings)
     return Findings(
         heading=heading,
         holdings=held,
         question=question,
         settings=settings,
         loaded=loaded[question.of],
-        chain=run(panel, settings),
+        chain=chain,
         estimates=estimates(USUAL, panel, settings, stream(collection, question.of)),
         before=_before(collection, question.of, previous, loaded, settings),
         rises=ageing.rises(panel),
-        gain=sensitivity.gain_per_percent(indicators.find("e0"), panel, settings),
+        gain=sensitivity.gain_per_percent(indicators.find("e0"), chain),
         moved=moved(
             session,
             heading,

@@ -1,14 +1,17 @@
 """Sensitivity of e0 to survival, and the short cut that holds in one kind of table only."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
 from engine import sensitivity
 from engine.ages import AgeGrid
-from engine.chain import run
+from engine.chain import gradient, run
 from engine.indicators import find as indicator
 from engine.settings import SETTINGS, find
-from engine.tables import LifeTable, Partials, from_qx, pull
+from engine.stages.separation import separate
+from engine.tables import LifeTable, Partials, from_qx, from_rates, pull
 from tests.factories import GRIDS, gompertz_panel
 
 
@@ -73,14 +76,37 @@ def test_elsewhere_it_errs(name: str, least: float, capsys: pytest.CaptureFixtur
 
 @pytest.mark.fast
 @pytest.mark.parametrize("settings", SETTINGS.values(), ids=SETTINGS)
-def test_one_per_cent_less_at_one_age(settings) -> None:
+def test_one_per_cent_less_at_one_age_of_the_table(settings) -> None:
     panel = gompertz_panel(seed=3, people=5e6)
-    gain = sensitivity.gain_per_percent(indicator("e0"), panel, settings)
-    mx = run(panel, settings).rates.mx
-    value = indicator("e0").value
-    for x in range(len(mx)):
-        lower, higher = mx.copy(), mx.copy()
+    chain = run(panel, settings)
+    gain = sensitivity.gain_per_percent(indicator("e0"), chain)
+
+    def value(mx: np.ndarray) -> float:
+        closed = replace(chain.closed, mx=mx)
+        ax = separate(closed, panel.infant_weight, panel.infant_ratio, settings).ax
+        return float(from_rates(closed.grid, mx, ax).ex[0])
+
+    assert gain.shape == chain.table.mx.shape
+    for x in range(len(gain)):
+        lower, higher = chain.table.mx.copy(), chain.table.mx.copy()
         lower[x] *= 0.995
         higher[x] *= 1.005
-        change = value(run(panel, settings, mx=lower)) - value(run(panel, settings, mx=higher))
-        assert gain[x] == pytest.approx(change, rel=1e-3, abs=1e-9)
+        assert gain[x] == pytest.approx(value(lower) - value(higher), rel=1e-3, abs=1e-9)
+
+
+@pytest.mark.fast
+def test_of_counted_ages_it_is_the_gradient_in_the_raw_rates() -> None:
+    chain = run(gompertz_panel(seed=3, people=5e6), find("almanac-1"))
+    by_rate = gradient(indicator("e0"), chain)
+    np.testing.assert_allclose(
+        sensitivity.gain_per_percent(indicator("e0"), chain),
+        -0.01 * chain.rates.mx * by_rate,
+        rtol=1e-12,
+    )
+
+
+@pytest.mark.fast
+def test_what_is_not_read_off_the_table_has_no_such_gain() -> None:
+    chain = run(gompertz_panel(), find("almanac-1"))
+    with pytest.raises(ValueError, match="not off the table"):
+        sensitivity.gain_per_percent(indicator("ageing_rate"), chain)
