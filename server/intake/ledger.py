@@ -77,6 +77,8 @@ class Ledger:
         """Places of persons where women and men have the measure too."""
         places = self.places(measure)
         persons: Ints = places[parts_of(places)[1] == SEXES.index("p")]
+        if not len(persons):
+            return persons
         women, men = sexes_of(persons)
         both: Ints = persons[np.isin(women, places) & np.isin(men, places)]
         return both

@@ -3,6 +3,7 @@
 from collections import defaultdict
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
+from itertools import repeat
 
 import numpy as np
 
@@ -226,11 +227,18 @@ def _ledger(
 
 def _vectors(ledger: Ledger) -> dict[Key, Vector]:
     """The schedules as the store keeps them, in the order of their keys within each measure."""
-    found = {}
+    found: dict[Key, Vector] = {}
     for block in ledger.on_common_grids():
-        statuses = ["provisional" if mark else "final" for mark in block.provisional.tolist()]
-        names = (part.tolist() for part in parts_of(block.place))
-        for area, sex, year, status, values in zip(*names, statuses, block.values, strict=True):
-            key = Key(ledger.codes[area], SEXES[sex], str(year), block.measure)
-            found[key] = Vector(status, block.grid, values)
+        area, sex, year = parts_of(block.place)
+        keys = map(
+            Key,
+            np.array(ledger.codes, object)[area],
+            np.array(SEXES, object)[sex],
+            year.astype(str).tolist(),
+            repeat(block.measure),
+        )
+        statuses = np.array(["final", "provisional"], object)[block.provisional.astype(int)]
+        found.update(
+            zip(keys, map(Vector, statuses, repeat(block.grid), block.values), strict=True)
+        )
     return found

@@ -76,8 +76,10 @@ def _jumps_of(measure: str, ledger: Ledger) -> Iterator[Fault]:
 
 
 def _infants(ledger: Ledger) -> Iterator[Fault]:
+    if not ledger.of("births"):
+        return
     deaths = ledger.lines.get("deaths", {})
-    for place, (block, line) in ledger.lines.get("births", {}).items():
+    for place, (block, line) in ledger.lines["births"].items():
         sexes = [place] if place in deaths else sexes_of(place)
         lines = [deaths[at] for at in sexes if at in deaths]
         if len(lines) != len(sexes) or not all(map(_first_year, lines)):
