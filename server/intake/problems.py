@@ -107,26 +107,28 @@ class Problem:
         )
 
     def rows_worded(self, translate: Translate = plain, show: Show = figure) -> str:
-        """ "row 212", "rows 418 to 430" or "9 rows between 12 and 301"; empty where no row is to
-        blame."""
+        """ "212", "418 to 430" or "9 between 12 and 301"; empty where no row is to blame."""
         if self.row is None:
             return ""
         if self.last_row is None or self.last_row == self.row:
-            return translate("row {row}", row=show(self.row))
+            return show(self.row)
         ends = {"first": show(self.row), "last": show(self.last_row)}
         if self.rows == self.last_row - self.row + 1:
-            return translate("rows {first} to {last}", **ends)
-        return translate("{count} rows between {first} and {last}", count=show(self.rows), **ends)
+            return translate("{first} to {last}", **ends)
+        return translate("{count} between {first} and {last}", count=show(self.rows), **ends)
 
     def sentence(self, translate: Translate = plain, show: Show = figure) -> str:
         """The whole problem in one line, as a terminal or an error page prints it."""
         words = self.worded(translate, show)
-        place = [self.file or translate("the upload"), self.rows_worded(translate, show)]
+        place = [self.file or translate("the upload")]
+        if rows := self.rows_worded(translate, show):
+            one = self.last_row in (None, self.row)
+            place.append(translate("row {rows}" if one else "rows {rows}", rows=rows))
         if self.column:
             place.append(translate("column {column}", column=self.column))
         return translate(
             "{place}: found {found}, expected {expected}. {remedy}",
-            place=", ".join(part for part in place if part),
+            place=", ".join(place),
             found=words.found,
             expected=words.expected,
             remedy=words.remedy,

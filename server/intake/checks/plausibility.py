@@ -9,7 +9,7 @@ from engine.ages import Array
 from server.intake.cells import YEARS, Flags, Ints, sexes_of
 from server.intake.checks.check import Check
 from server.intake.ledger import Ledger, Line
-from server.intake.problems import Fault, Value
+from server.intake.problems import Fault, Value, figure
 
 
 @dataclass(frozen=True, slots=True)
@@ -100,7 +100,7 @@ def _fractions(ledger: Ledger) -> Iterator[Fault]:
     for block in ledger.of("deaths"):
         broken = block.values != np.round(block.values)
         if broken.any():
-            yield block.fault(block.row[broken], {"value": float(block.values[broken][0])})
+            yield block.fault(block.row[broken], {"text": figure(block.values[broken][0])})
 
 
 def _changing_ages(ledger: Ledger) -> Iterator[Fault]:
@@ -157,7 +157,7 @@ CHECKS: tuple[Check[Ledger], ...] = (
         key="fractional_deaths",
         severity="warning",
         meaning="Deaths are not whole numbers. They are taken as they are.",
-        found="{value}",
+        found="{text}",
         expected="whole numbers of deaths",
         remedy="Say in the note where the fractions come from (deaths shared out, estimates).",
         find=_fractions,

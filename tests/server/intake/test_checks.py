@@ -84,12 +84,13 @@ def test_clean_danish_counts_trip_none() -> None:
 def test_many_rows_with_one_fault_are_one_problem() -> None:
     (problem,) = problems(counts(setting(SOUND, where(SOUND, sex="f"), sex="x")))
     assert (problem.row, problem.last_row, problem.rows) == (2, 134, 70)
-    assert problem.rows_worded() == "70 rows between 2 and 134"
+    assert problem.rows_worded() == "70 between 2 and 134"
 
 
 def test_rows_in_a_run_are_named_by_their_ends() -> None:
     (problem,) = problems(counts(setting(SOUND, WOMEN, sex="x")))
-    assert problem.rows_worded() == "rows 30 to 36"
+    assert problem.rows_worded() == "30 to 36"
+    assert str(problem).startswith("counts.csv, rows 30 to 36, column sex: found")
 
 
 def test_beyond_some_different_faults_the_rest_is_counted() -> None:

@@ -23,7 +23,7 @@ def test_it_says_where_what_and_what_to_do() -> None:
 
 
 def test_numbers_are_shown_as_the_page_shows_them() -> None:
-    assert problem(**THREE).rows_worded(show=lambda n: f"{n:,}") == "rows 1,200 to 1,202"
+    assert problem(**THREE).rows_worded(show=lambda n: f"{n:,}") == "1,200 to 1,202"
 
 
 def test_every_word_but_the_users_own_passes_through_the_catalogue() -> None:
@@ -32,7 +32,7 @@ def test_every_word_but_the_users_own_passes_through_the_catalogue() -> None:
         assert words.found == "⟦“x”⟧"
         assert words.expected.startswith("⟦f, m or p")
         assert words.remedy.endswith("⟧")
-        assert problem(**THREE).rows_worded(_) == "⟦rows 1200 to 1202⟧"
+        assert problem(**THREE).rows_worded(_) == "⟦1200 to 1202⟧"
         assert problem(others=4, values={"text": "x"}).worded(_).found.startswith("⟦⟦“x”⟧ and 4")
 
 
