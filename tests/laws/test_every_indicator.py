@@ -52,6 +52,7 @@ def test_keys_and_labels_are_told_apart() -> None:
     assert len({indicator.label for indicator in INDICATORS.values()}) == len(INDICATORS)
 
 
+@pytest.mark.slow
 @every_chain
 @every_indicator
 @drawn
