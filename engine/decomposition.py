@@ -100,6 +100,8 @@ def contribution_limits(
         for side, panel in (("this", this), ("that", that))
     )
     by_age = contributions(indicator, this, that, settings).by_age
+    if groups is not None:
+        by_age = this.grid.regroup(by_age, groups)
     limits = quantiles(by_age.reshape(draws, -1), settings.level).reshape(2, *by_age.shape[1:])
     return Limits(limits[0], limits[1])
 

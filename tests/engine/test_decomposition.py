@@ -12,7 +12,7 @@ import pytest
 from engine.ages import AgeGrid
 from engine.chain import Reading, run
 from engine.decomposition import arriaga, contribution_limits, contributions
-from engine.indicators import INDICATORS
+from engine.indicators import INDICATORS, difference
 from engine.panel import Panel
 from engine.settings import Settings, find
 from tests.factories import GRIDS, codes, gompertz_panel
@@ -227,6 +227,19 @@ def test_limits_are_those_of_the_delta_method_for_large_counts() -> None:
     expected = 2 * 1.96 * np.abs(slope) * np.sqrt(sum(chain.rates.variance for chain in chains))
     assert ((limits.low < found) & (found < limits.high)).all()
     np.testing.assert_allclose(limits.high - limits.low, expected, rtol=0.15)
+
+
+@pytest.mark.fast
+def test_limits_of_groups_are_those_of_the_sums() -> None:
+    """One group that holds every age: the limits of the whole difference, as simulated."""
+    this = gompertz_panel(seed=5, people=3e7, level=2e-5, slope=0.095)
+    that = gompertz_panel(seed=6, people=3e7, level=3e-5, slope=0.095)
+    whole = contribution_limits(
+        INDICATORS["e0"], this, that, PLAIN, streams=codes(this), draws=400, groups=AgeGrid((0,))
+    )
+    assert whole.low.shape == (1,)
+    expected = difference(INDICATORS["e0"], this, that, PLAIN)
+    np.testing.assert_allclose(whole.high - whole.low, expected.high - expected.low, rtol=0.15)
 
 
 @pytest.mark.fast
