@@ -10,7 +10,6 @@ from server.charts.places import spread, storeys
 from server.charts.template import CHARACTER, DIVISION, RULE, Measure
 
 Part = dict[str, Any]
-LEAST_CELL = 25  # px a figure under a bar needs
 ENDS = 28  # px between the last point and the edge, beside the label itself
 
 
@@ -40,7 +39,12 @@ def _end_label(series: Series, measure: Measure) -> str:
 
 def _has_row(chart: Chart, measure: Measure, width: float) -> bool:
     cells = chart.foot_row
-    return bool(cells) and measure.foot > 0 and width / len(cells) >= LEAST_CELL
+    return bool(cells) and measure.foot > 0 and width >= len(cells) * _cell(chart, measure)
+
+
+def _cell(chart: Chart, measure: Measure) -> float:
+    """Width that a figure under a bar needs, px."""
+    return 3 + CHARACTER * measure.foot / 14.5 * max(len(text) for _, text in chart.foot_row)
 
 
 class _Canvas:
@@ -270,9 +274,7 @@ class _Canvas:
             return
         under: Part = {"y": 0, "yref": "paper", "yanchor": "top"}
         wanted = [self.px(x) for x, _ in chart.foot_row]
-        widest = max(len(text) for _, text in chart.foot_row) * CHARACTER * size / 14.5
-        apart = min(widest + 3, self.width / len(wanted))
-        got = spread(wanted, apart, -self.margin["l"], self.width)
+        got = spread(wanted, _cell(chart, self.measure), -self.margin["l"], self.width)
         for (x, text), want, at in zip(chart.foot_row, wanted, got, strict=True):
             place: Part = {"x": x, "xref": "x", "xanchor": "center", "xshift": at - want}
             yield self._word(text, size=size, yshift=-34, **place, **under)

@@ -29,7 +29,8 @@ def page_classes() -> list[type[Page]]:
     while waiting:
         page = waiting.pop()
         waiting += page.__subclasses__()
-        if "template" in vars(page) and dataclasses.is_dataclass(page):
+        ours = page.__module__.startswith("server.")
+        if ours and "template" in vars(page) and dataclasses.is_dataclass(page):
             found.append(page)
     return sorted(found, key=lambda page: page.__name__)
 

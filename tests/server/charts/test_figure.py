@@ -150,6 +150,9 @@ def test_the_figures_stand_under_their_bars_where_there_is_room() -> None:
     made = figure(BARS, say)
     assert {"+1.50", "−0.25", "+1.25", "⟦sum⟧"} <= set(words(made["layout"]))
     assert "⟦sum⟧ +1.25" in words(made["narrow"])
+    cells = [note for note in made["layout"]["annotations"] if note["text"] in ("+1.50", "−0.25")]
+    centres = [756 * note["x"] / 100 + note["xshift"] for note in cells]
+    assert centres[1] - centres[0] > 30  # apart, though their bars are not
     many = a_chart(series=BARS.series, foot_sum="+9", foot_row=tuple((x, "+1") for x in range(60)))
     assert "⟦sum⟧ +9" in words(figure(many, say)["layout"])
     assert "+1" not in words(figure(many, say)["layout"])
