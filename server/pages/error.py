@@ -1,12 +1,15 @@
 """The page of an address or a form that could not be answered: what is so, and what to do."""
 
+import re
 from dataclasses import dataclass
 from typing import ClassVar
 
 from server.pages.page import Frame, Notice, Page
-from server.sentences.pieces import Piece
+from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
 from server.web.problem import Problem
+
+_OF_EDITION = re.compile(r"(/c/[^/?]+)/[^/?]+(/.+)")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -28,6 +31,7 @@ def build(problem: Problem) -> ErrorPage:
             locator=(Piece(_("Collections"), "/collections"),),
         ),
         answer=(Piece(problem.detail),),
+        lead=_way_on(problem),
         asked=problem.asked,
         reference=_(
             "Problem {status}, request {request}.",
@@ -36,4 +40,19 @@ def build(problem: Problem) -> ErrorPage:
         ),
         errors=problem.errors,
         alert=Notice(problem.title, (Piece(" ".join((problem.detail, *problem.errors))),)),
+    )
+
+
+def _way_on(problem: Problem) -> tuple[Sentence, ...]:
+    """From a page of an edition that is not there, to the same page of the edition that stands."""
+    found = _OF_EDITION.fullmatch(problem.asked)
+    if problem.status != 404 or found is None:
+        return ()
+    collection, rest = found.groups()
+    return (
+        phrase(
+            _("The same page may stand in {newest}; {collection} says which editions there are."),
+            newest=Piece(_("the newest edition"), f"{collection}{rest}"),
+            collection=Piece(_("the collection"), collection),
+        ),
     )
