@@ -18,7 +18,7 @@ BOTH = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgres)]
 _NUMBERS = count(1)
 
 
-@pytest.hookimpl(trylast=True)
+@pytest.hookimpl(tryfirst=True)
 def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
     """The working loop is everything that is not marked as something slower."""
     for item in items:
