@@ -114,17 +114,20 @@ def _missing(found: Comparison, key: str) -> Cell:
     return gap(int(found.difference[key].reason), found.settings)
 
 
+def _remainder_words(found: Comparison) -> str:
+    """What the row of its own for what no age accounts for is called; empty where it is not owed:
+    rounding is all there is."""
+    told = (say.remainder(part.remainder, part.difference) for part in found.contributions.values())
+    return next((words for words in told if words), "")
+
+
 def _remainder_row(found: Comparison) -> Iterable[Row]:
-    """A row of its own for what no age accounts for, where it is more than rounding."""
-    words, cells = "", list[Cell]()
+    words, cells = _remainder_words(found), list[Cell]()
+    none = number(np.nan, _("no age, hence no interval"))
     for key in DECOMPOSED:
-        part, scale = found.contributions.get(key), PRINTED[key]
-        if part is None:
-            cells += [_missing(found, key)] * 3
-            continue
-        words = words or say.remainder(part.remainder, part.difference)
-        none = number(np.nan, _("no age, hence no interval"))
-        cells += [scale * part.remainder, none, none]
+        part = found.contributions.get(key)
+        gone = _missing(found, key)
+        cells += [gone] * 3 if part is None else [PRINTED[key] * part.remainder, none, none]
     return [Row((words, *cells))] if words else []
 
 
@@ -147,10 +150,18 @@ def ages(found: Comparison) -> Table:
         Row((label, *(_one(found, column, scale, key, at) for column, scale, key in made)))
         for at, label in enumerate(found.grid.labels)
     )
+    left = [_left(found, "e0"), 0.0, _left(found, "H")]
     sums = (
-        _missing(found, key) if column is None else number(scale * float(column.sum()))
-        for column, scale, key in made
+        _missing(found, key) if column is None else scale * (float(column.sum()) + rest)
+        for (column, scale, key), rest in zip(made, left, strict=True)
     )
+    words = _remainder_words(found)
+    if words:
+        rest = (
+            _missing(found, key) if column is None else scale * part
+            for (column, scale, key), part in zip(made, left, strict=True)
+        )
+        rows = (*rows, Row((words, *rest)))
     return Table(
         "ages",
         _("Contribution of each single age group, by two methods"),
@@ -162,6 +173,11 @@ def ages(found: Comparison) -> Table:
         ),
         total=Row((_("sum"), *sums)),
     )
+
+
+def _left(found: Comparison, key: str) -> float:
+    part = found.contributions.get(key)
+    return 0.0 if part is None else part.remainder
 
 
 def _by_age(found: Comparison, key: str) -> Array | None:

@@ -219,9 +219,9 @@ def carried(ages: str, part: float, difference: float, unit_decimals: int = 1) -
 
 def evenness(pair: Pair, of: Answer) -> Sentence:
     """Whether lives were of more equal length; `of` is H."""
-    here, there = (shown(side, of.indicator.unit) for side in (of.this, of.that))
     if of.kind in (Movement.UNKNOWN, Movement.WITHOUT_INTERVAL):
         return ()
+    here, there = (shown(side, of.indicator.unit) for side in (of.this, of.that))
     if of.kind in (Movement.NOT_CLEAR, Movement.TOO_SMALL):
         return phrase(
             _(

@@ -1,0 +1,125 @@
+"""The trend as data: lines, bands and table are the same numbers; the statements do not grow."""
+
+from collections.abc import Callable
+from contextlib import AbstractContextManager
+
+import pytest
+
+from server.exports.table import Gap, Table
+from server.pages.trend import TrendPage, build
+from server.results.loading import NotInEdition
+from server.results.questions import TrendQuestion
+from server.results.series import TooLarge
+from server.sentences.pieces import plain
+from server.store.connect import Session
+from server.store.heading import heading
+from tests.factories import edition, gompertz_panel
+
+YEARS = tuple(str(year) for year in range(2005, 2015))
+
+
+@pytest.fixture
+def isle(session: Session) -> Session:
+    """Ten years in which the north gains and the rock is too small to tell; 2014 is provisional."""
+    panels = {}
+    for seed, year in enumerate(YEARS):
+        for sex in "fm":
+            level = (2.2e-5 if sex == "f" else 3.4e-5) - 8e-7 * seed
+            panels[f"north.{sex}.{year}"] = gompertz_panel(
+                sex=sex, seed=seed, level=level, people=2e6
+            )
+            panels[f"rock.{sex}.{year}"] = gompertz_panel(sex=sex, seed=seed, people=9e3)
+    edition(
+        session, panels, parents=dict.fromkeys(("north", "rock"), "isle"), provisional=("2014",)
+    )
+    return session
+
+
+def page(
+    session: Session, of: str = "e0", *, number: int = 1, **asked: tuple[str, ...]
+) -> TrendPage:
+    question = TrendQuestion(of, **asked).completed(  # type: ignore[arg-type]
+        areas=["isle", "north", "rock"], sexes=("f", "m", "p"), periods=YEARS
+    )
+    return build(session, heading(session, "isle", number), question)
+
+
+def words(built: TrendPage) -> str:
+    said = " ".join(plain(sentence) for sentence in (built.answer, *built.lead))
+    return said.replace("\N{NO-BREAK SPACE}", " ")
+
+
+def rows(table: Table, **where: str) -> list[tuple[object, ...]]:
+    at = {table.column(key): text for key, text in where.items()}
+    return [row.cells for row in table.rows if all(row.cells[i] == text for i, text in at.items())]
+
+
+def test_lines_bands_and_tables_are_the_same_numbers(isle: Session) -> None:
+    built = page(isle, areas=("north", "rock"))
+    (chart,) = built.charts
+    long, wide = built.table("estimates"), built.table("years")
+    assert [series.sex for series in chart.series] == ["f", "m", "f", "m"]
+    found = rows(long, area="north", sex="m")
+    line = chart.series[1]
+    for key, drawn in (("value", line.y), ("value_low", line.low), ("value_high", line.high)):
+        assert [row[long.column(key)] for row in found] == list(drawn)
+    printed = [row.cells[wide.column("north.m")] for row in reversed(wide.rows)]
+    assert printed == list(line.y)
+    assert line.provisional == (False,) * 9 + (True,)
+    assert [row.provisional for row in wide.rows] == [True] + [False] * 9
+    low, high = chart.y_range
+    assert all(low <= value <= high for value in (*line.low, *line.high))  # type: ignore[operator]
+
+
+def test_the_whole_comes_first_and_keeps_its_colour(isle: Session) -> None:
+    both, alone = page(isle, areas=("north", "isle")), page(isle, areas=("north",))
+    assert words(both).startswith("Women of Isle gained")
+    assert "women of North +" in words(both)
+    assert both.charts[0].series[2].role == alone.charts[0].series[0].role
+
+
+def test_small_populations_are_flagged(isle: Session) -> None:
+    told = {caution.word: caution.text for caution in page(isle, areas=("rock", "north")).cautions}
+    assert "women of Rock" in told["Small numbers"]
+    assert "North" not in told["Small numbers"]
+    assert "2014 is provisional" in told["Provisional"]
+
+
+def test_what_cannot_be_read_is_a_gap_with_its_reason(isle: Session) -> None:
+    built = page(isle, "e67", areas=("north",))
+    assert not built.drawn
+    assert "fewer than two" in words(built)
+    assert all(isinstance(row.cells[1], Gap) for row in built.table("years").rows)
+    assert "Not drawn" in [caution.word for caution in built.cautions]
+
+
+@pytest.mark.parametrize("of", ["e0", "H", "median"])
+def test_the_statements_do_not_grow_with_the_series(
+    isle: Session, of: str, count_statements: Callable[[], AbstractContextManager[list[str]]]
+) -> None:
+    counts = []
+    for areas, first in ((("north",), "2013"), (("isle", "north", "rock"), "2005")):
+        with count_statements() as statements:
+            page(isle, of, areas=areas, first=(first), sexes=("f", "m", "p"))  # type: ignore[arg-type]
+        counts.append(len(statements))
+    assert counts[0] == counts[1] <= 8
+
+
+def test_a_newer_edition_is_named_with_what_it_moves(isle: Session) -> None:
+    edition(isle, {"north.f.2014": gompertz_panel(seed=50, level=1.2e-5, people=2e6)})
+    built = page(isle, areas=("north",), sexes=("f",))
+    (notice,) = built.frame.notices
+    assert "Edition 2" in plain(notice.text)
+    assert "Life expectancy at birth of women of North in 2014" in plain(notice.text)
+    assert page(isle, number=2, areas=("north",)).frame.notices == ()
+
+
+def test_areas_that_are_not_there_and_questions_too_large_are_refused(isle: Session) -> None:
+    with pytest.raises(NotInEdition, match="areas are"):
+        page(isle, areas=("atlantis",))
+    with pytest.raises(TooLarge, match="at most"):
+        build(
+            isle,
+            heading(isle, "isle", 1),
+            TrendQuestion("mode", ("isle", "north", "rock") * 60, ("f", "m", "p"), "2005", "2014"),
+        )

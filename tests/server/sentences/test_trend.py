@@ -1,0 +1,78 @@
+"""What a trend page says: no direction its interval does not bear out."""
+
+from dataclasses import replace
+
+from hypothesis import given
+
+from engine.estimates import Estimate
+from engine.indicators import INDICATORS
+from server.sentences import trend as say
+from server.sentences.pieces import Sentence, plain
+from tests.server.sentences.test_movements import differences, estimate
+
+
+def words(sentence: Sentence) -> str:
+    return plain(sentence).replace("\N{NO-BREAK SPACE}", " ")
+
+
+def course(change: Estimate, of: str = "e0") -> say.Course:
+    return say.Course(
+        INDICATORS[of],
+        "f",
+        "Northlade",
+        "1995",
+        "2012",
+        estimate(77.8),
+        estimate(82.0),
+        change,
+        "2003",
+        estimate(1.5, 1.2, 1.8),
+        estimate(0.1, -0.2, 0.4),
+    )
+
+
+def test_a_gain_and_how_it_was_spread() -> None:
+    one = course(estimate(4.2, 3.9, 4.5))
+    assert words(say.answer(one, "Life expectancy at birth", "")) == (
+        "Women of Northlade gained 4.2 years of life expectancy at birth between 1995 and 2012"
+        " (3.9 to 4.5)."
+    )
+    assert words(say.halves(one)) == (
+        "In the two halves of these years: +1.5 from 1995 to 2003 (+1.2 to +1.8); no clear change"
+        " from 2003 to 2012 (−0.2 to +0.4)."
+    )
+    assert say.halves(replace(one, middle="")) == ()
+
+
+def test_other_indicators_rise_and_fall() -> None:
+    said = words(say.answer(course(estimate(-0.01, -0.02, -0.005), "H"), "Unevenness", ""))
+    assert (
+        said
+        == "Unevenness of women of Northlade fell by 0.010 between 1995 and 2012 (0.005 to 0.020)."
+    )
+
+
+def test_too_few_years_are_said() -> None:
+    said = words(say.answer(None, "Life-table median", "men of Tollbay"))
+    assert "fewer than two of them have a figure" in said
+
+
+@given(differences())
+def test_no_direction_is_claimed_that_the_interval_does_not_bear_out(change: Estimate) -> None:
+    one = course(change)
+    said = words(say.answer(one, "Life expectancy at birth", ""))
+    if "gained" in said:
+        assert change.low > 0
+    elif "lost" in said:
+        assert change.high < 0
+    else:
+        assert "No clear change" in said or "how much of that is chance" in said
+    other = words(say.others([one]))
+    assert ("no clear change" in other) or one.kind in (*say.CLEAR, say.Movement.WITHOUT_INTERVAL)
+
+
+def test_small_numbers_are_named() -> None:
+    assert say.small([]) is None
+    told = say.small(["women of Little Auk"])
+    assert told is not None
+    assert "women of Little Auk" in told[1]
