@@ -10,6 +10,7 @@ from server.intake.cells import Ints, parts_of
 from server.intake.checks.check import Check, Marks, gathered
 from server.intake.ledger import Ledger
 from server.intake.problems import Fault, Value
+from server.intake.schedules import MEASURES
 
 
 def _missed(ledger: Ledger, here: str, there: str) -> Ints:
@@ -42,6 +43,12 @@ def _years(years: list[int]) -> str:
             runs.append([year, year])
     text = ", ".join(str(a) if a == b else f"{a}–{b}" for a, b in runs)
     return text if len(text) <= 120 else text[:120].rsplit(",", 1)[0] + " …"
+
+
+def _twice(ledger: Ledger) -> Iterator[Fault]:
+    for measure in MEASURES.values():
+        places = ledger.places(measure)
+        yield from _by_area(ledger, np.unique(places[1:][places[1:] == places[:-1]]), measure)
 
 
 def _deaths_alone(ledger: Ledger) -> Iterator[Fault]:
@@ -118,6 +125,15 @@ def _years_missing(ledger: Ledger) -> Iterator[Fault]:
 
 
 CHECKS: tuple[Check[Ledger], ...] = (
+    Check(
+        key="in_two_files",
+        severity="error",
+        meaning="The same counts stand in two files of the upload.",
+        found="{area}: {sexes}, {years} in another file too",
+        expected="each area, sex and year in one file",
+        remedy="Take the counts out of one of the files, or leave that file out.",
+        find=_twice,
+    ),
     Check(
         key="deaths_without_population",
         severity="error",

@@ -104,6 +104,7 @@ CASES = (
     Case("overlap_of_ages", _set(where(WOMEN, age="15-44"), age="10-44")),
     Case("ages_start_late", lambda: [counts(without(SOUND, where(WOMEN, age="0")))]),
     Case("no_open_interval", _set(ONE, age="85-99")),
+    Case("in_two_files", lambda: [counts(SOUND), deaths(WOMEN)]),
     Case("deaths_without_population", lambda: [deaths(SOUND), population(without(SOUND, WOMEN))]),
     Case("population_without_deaths", lambda: [deaths(SOUND[:-14]), population(SOUND)]),
     Case("grids_differ", lambda: [deaths(SOUND), population(_joined("5-14", "15-44", "5-44"))]),

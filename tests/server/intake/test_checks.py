@@ -109,6 +109,11 @@ def test_faults_of_all_kinds_come_at_once() -> None:
     assert set(keys(counts(table))) == {"thousands_separator", "unknown_sex", "unreadable_age"}
 
 
+def test_what_is_missing_for_a_fault_is_not_missed_too() -> None:
+    assert keys(deaths(SOUND), population(setting(SOUND, ONE, population="?"))) == ["not_a_number"]
+    assert keys(deaths(setting(SOUND, ONE, age="?")), population(SOUND)) == ["unreadable_age"]
+
+
 def test_blank_lines_are_no_rows_but_count_as_lines() -> None:
     content = csv(SOUND).replace(b"\nnorth,2012,f,0", b"\n\n\nnorth,2012,x,0", 1) + b"\n\n"
     parsed = parse([counts(content)])
