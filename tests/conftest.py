@@ -18,9 +18,12 @@ BOTH = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgres)]
 _NUMBERS = count(1)
 
 
-@pytest.hookimpl(tryfirst=True)
 def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
-    """The working loop is everything that is not marked as something slower."""
+    """The working loop is everything that is not marked as something slower.
+
+    Called after the hooks of inner conftests, which mark, and before pytest selects by marks; a
+    `tryfirst` or `trylast` would break the one or the other.
+    """
     for item in items:
         if not any(item.get_closest_marker(name) for name in ("slow", "browser", "postgres")):
             item.add_marker("fast")

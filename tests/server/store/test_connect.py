@@ -55,7 +55,8 @@ def test_an_exception_takes_everything_back(
 def test_sessions_that_read_before_they_write_wait_for_each_other(
     session: Session, new_session: sessionmaker[Session]
 ) -> None:
-    """A reading transaction that turned to writing would fail at once on SQLite."""
+    """Before the transaction and in it. A reading transaction that turned to writing would fail at
+    once on SQLite."""
     stored = stored_collection(session)
     start, failures = Barrier(4), []
 
@@ -66,6 +67,7 @@ def test_sessions_that_read_before_they_write_wait_for_each_other(
                 for _ in range(10):
                     collections.find(own, "saltmarsh")
                     with transaction(own):
+                        collections.find(own, "saltmarsh")
                         collections.touch(own, stored.id)
         except Exception as error:
             failures.append(error)
