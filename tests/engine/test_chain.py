@@ -138,6 +138,16 @@ def test_what_an_indicator_does_not_read_passes_no_nan_on(settings: Settings) ->
 
 
 @pytest.mark.fast
+@pytest.mark.parametrize("settings", ["almanac-1-gompertz", "almanac-1-kannisto"])
+def test_a_law_reads_the_closed_groups_from_the_stated_age(settings: str) -> None:
+    chain = run(gompertz_panel(seed=8, people=5e6), find(settings))
+    by_law = np.zeros(len(chain.table.grid))
+    by_law[-1] = 1
+    read = np.array(chain.panel.grid.starts)[chain.closed.pull(by_law) != 0]
+    np.testing.assert_array_equal(read, range(chain.settings.fit_from, 100, 5))
+
+
+@pytest.mark.fast
 def test_what_reaches_the_open_age() -> None:
     panel = gompertz_panel(AgeGrid((0, 1, *range(5, 90, 5))), seed=9, people=5e6)
     plain, law = run(panel, find("almanac-1")), run(panel, find("almanac-1-gompertz"))
