@@ -36,8 +36,8 @@ def correct_upload(
     ]
     files = taken([*kept, file], limit=limit)
     with transaction(session):
-        uploads.erase(session, upload_id)
         new = uploads.receive(session, collection=old.collection, files=files, by=by.name, at=now)
+        uploads.erase(session, upload_id)
         if old.basis is None:
             return new
         mappings = {one.role: one.mapping for one in old.files}

@@ -8,20 +8,11 @@ from engine.indicators import INDICATORS
 from engine.settings import SETTINGS
 from server.exports.table import Column, Row, Table
 from server.intake.checks import KINDS
+from server.pages.entry import Entry
 from server.pages.page import Frame, Page
 from server.sentences import methods as say
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
-
-
-@dataclass(frozen=True, slots=True)
-class Entry:
-    """One entry of a registry; its key is its anchor on the page."""
-
-    key: str
-    label: str
-    symbol: str
-    facts: say.Facts
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -29,6 +20,7 @@ class MethodsPage(Page):
     """How is this figure made, and who says so?"""
 
     template: ClassVar[str] = "methods/page.html"
+    links: tuple[Sentence, ...]  # to every entry, since the page is long
     indicators: tuple[Entry, ...]
     chains: tuple[Entry, ...]
 
@@ -45,7 +37,9 @@ def build() -> MethodsPage:
         answer=phrase(
             _("Every figure is made by a published method, under settings named in its address.")
         ),
-        lead=(_contents(indicators),),
+        links=tuple(
+            (Piece(_(one.label), f"#{one.key}"),) for one in (*indicators, *SETTINGS.values())
+        ),
         indicators=tuple(
             Entry(one.key, _(one.label), _(one.symbol), say.indicator(one)) for one in indicators
         ),
@@ -55,13 +49,6 @@ def build() -> MethodsPage:
         tables=(_indicators(indicators), _settings(), _checks()),
         twins={twin: f"/methods.{twin}" for twin in ("csv", "xlsx", "json")},
     )
-
-
-def _contents(indicators: tuple[Indicator, ...]) -> Sentence:
-    """Links to every entry, since the page is long."""
-    links = [Piece(_(one.label), f"#{one.key}") for one in indicators]
-    joined = tuple(piece for link in links for piece in (Piece("; "), link))[1:]
-    return (*phrase(_("Here are: ")), *joined, Piece("."))
 
 
 def _indicators(indicators: tuple[Indicator, ...]) -> Table:
@@ -123,10 +110,9 @@ def _checks() -> Table:
             Column("meaning", _("what is checked")),
             Column("severity", _("what it means")),
             Column("remedy", _("what to do")),
-            Column("key", _("key")),
         ),
         tuple(
-            Row((_(one.meaning), say.severity(one.severity), _(one.remedy), one.key))
+            Row((_(one.meaning), say.severity(one.severity), _(one.remedy)))
             for one in KINDS.values()
         ),
     )

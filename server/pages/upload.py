@@ -3,16 +3,17 @@
 from dataclasses import dataclass
 from typing import ClassVar
 
-from server.exports.table import Column, Row, Table
+from server.pages.entry import Entry
 from server.pages.page import Frame, Page
 from server.pages.uploads import state
 from server.sentences import reading
 from server.sentences.dates import day
+from server.sentences.numbers import whole
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
 from server.store import collections, uploads
 from server.store.connect import Session
-from server.store.records import Collection, Upload
+from server.store.records import Collection, Upload, UploadFile
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -20,6 +21,7 @@ class UploadPage(Page):
     """What was handed in, and is it still what it was?"""
 
     template: ClassVar[str] = "upload/page.html"
+    files: tuple[Entry, ...]
     place: str  # address of the upload
     draft: bool
     checked: bool
@@ -36,7 +38,7 @@ def build(session: Session, upload_id: int) -> UploadPage:
             nav="upload",
         ),
         answer=_answer(upload, collection),
-        tables=(_files(upload),),
+        files=tuple(_file(file) for file in upload.files),
         place=f"/uploads/{upload.id}",
         draft=upload.edition is None,
         checked=bool(upload.report),
@@ -68,19 +70,14 @@ def _answer(upload: Upload, collection: Collection) -> Sentence:
     )
 
 
-def _files(upload: Upload) -> Table:
-    return Table(
-        "files",
-        _("Files"),
-        (
-            Column("name", _("file")),
-            Column("role", _("holds")),
-            Column("size", _("bytes"), decimals=0),
-            Column("sha256", _("SHA-256")),
+def _file(file: UploadFile) -> Entry:
+    return Entry(
+        key=file.role,
+        label=file.name,
+        symbol="",
+        facts=(
+            (_("Holds"), reading.role(file.role)),
+            (_("Size"), _("{size} bytes", size=whole(file.size))),
+            (_("SHA-256"), file.sha256),
         ),
-        tuple(
-            Row((file.name, reading.role(file.role), file.size, file.sha256))
-            for file in upload.files
-        ),
-        _("Kept byte for byte. Every edition can be made anew from these bytes."),
     )

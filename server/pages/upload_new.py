@@ -4,8 +4,9 @@ from dataclasses import dataclass
 from typing import ClassVar
 
 from server.pages.page import Frame, Page
-from server.sentences.pieces import Piece, phrase
+from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.reading import Options
+from server.sentences.start import templates
 from server.sentences.text import _
 from server.store import collections
 from server.store.connect import Session
@@ -18,7 +19,8 @@ class UploadNewPage(Page):
     template: ClassVar[str] = "upload_new/page.html"
     collections: Options  # the first is a new one
     chosen: str  # code; empty: a new one
-    limit: str  # largest upload
+    form_of_files: Sentence
+    templates: Sentence
 
 
 def build(session: Session, chosen: str, *, limit: int) -> UploadNewPage:
@@ -43,5 +45,13 @@ def build(session: Session, chosen: str, *, limit: int) -> UploadNewPage:
             *((one.code, one.name) for one in known),
         ),
         chosen=chosen or (known[0].code if len(known) == 1 else ""),
-        limit=_("{limit} MB", limit=limit // 1_000_000),
+        form_of_files=phrase(
+            _(
+                "CSV files in long form: one row for each year, sex and age, and area where there "
+                "are several. Deaths and population may come in one file or in two. Together at "
+                "most {limit} MB."
+            ),
+            limit=str(limit // 1_000_000),
+        ),
+        templates=templates(),
     )

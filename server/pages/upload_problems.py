@@ -40,7 +40,8 @@ class UploadProblemsPage(Page):
     place: str
     errors: Listing
     warnings: Listing
-    holds: tuple[tuple[str, str], ...]
+    counted: str  # how rows are counted
+    holds: tuple[tuple[str, str], ...]  # empty where nothing could be made out
     making: Making | None  # None: it is an edition already
 
 
@@ -68,7 +69,8 @@ def build(session: Session, upload_id: int) -> UploadProblemsPage:
         place=place,
         errors=_listing("errors", _("Must be put right"), report.errors),
         warnings=_listing("warnings", _("Wants a second look"), report.warnings),
-        holds=_holds(report),
+        counted=_("Rows are counted as in the file, the heading being row 1."),
+        holds=_holds(report) if report.periods else (),
         making=None if upload.edition else _making(session, upload, report, number),
     )
 

@@ -24,16 +24,24 @@ def lead() -> Sentence:
     )
 
 
+def templates() -> Sentence:
+    """The files to fill in, by their names."""
+    return phrase(_("Templates to fill in: {deaths}, {population}, {births}."), **_files())
+
+
+def _files() -> dict[str, Piece]:
+    return {name: Piece(f"{name}.csv", f"/templates/{name}.csv") for name in TEMPLATES}
+
+
 def steps() -> tuple[Sentence, ...]:
     """What to do with data of one's own, in order."""
-    files = {name: Piece(f"{name}.csv", f"/templates/{name}.csv") for name in TEMPLATES}
     return (
         phrase(
             _(
                 "Take a template and fill it in: {deaths}, {population}, and {births} if you have "
                 "births. Any long table that has these columns will do."
             ),
-            **files,
+            **_files(),
         ),
         phrase(
             _(
