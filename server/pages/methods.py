@@ -27,6 +27,12 @@ class MethodsPage(Page):
 
 def build() -> MethodsPage:
     indicators = tuple(INDICATORS.values())
+    entries = tuple(
+        Entry(one.key, _(one.label), _(one.symbol), say.indicator(one)) for one in indicators
+    )
+    chains = tuple(
+        Entry(one.key, _(one.label), one.key, say.settings(one)) for one in SETTINGS.values()
+    )
     return MethodsPage(
         frame=Frame(
             title=_("Methods"),
@@ -37,15 +43,9 @@ def build() -> MethodsPage:
         answer=phrase(
             _("Every figure is made by a published method, under settings named in its address.")
         ),
-        links=tuple(
-            (Piece(_(one.label), f"#{one.key}"),) for one in (*indicators, *SETTINGS.values())
-        ),
-        indicators=tuple(
-            Entry(one.key, _(one.label), _(one.symbol), say.indicator(one)) for one in indicators
-        ),
-        chains=tuple(
-            Entry(one.key, _(one.label), one.key, say.settings(one)) for one in SETTINGS.values()
-        ),
+        links=tuple((Piece(one.label, f"#{one.key}"),) for one in (*entries, *chains)),
+        indicators=entries,
+        chains=chains,
         tables=(_indicators(indicators), _settings(), _checks()),
         twins={twin: f"/methods.{twin}" for twin in ("csv", "xlsx", "json")},
     )

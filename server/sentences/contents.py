@@ -132,7 +132,7 @@ def questions(
 def withdrawing() -> str:
     return _(
         "Withdrawing takes nothing away: the figures can still be read at their addresses, with a "
-        "notice, and the edition before it stands again."
+        "notice. If this is the edition that stands, the newest before it stands again."
     )
 
 
