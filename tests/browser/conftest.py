@@ -12,7 +12,7 @@ from playwright.sync_api import Browser, sync_playwright
 from tests.browser.site import Site
 from tests.browser.visitor import Visitor, enter
 
-_ARGUMENTS = [
+ARGUMENTS = [
     "--no-sandbox",
     "--disable-gpu",
     "--disable-background-networking",
@@ -33,16 +33,21 @@ def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
             item.add_marker(pytest.mark.browser)
 
 
+def chromium() -> str | None:
+    """Path of the browser's program, where there is one."""
+    return shutil.which("chromium") or shutil.which("chromium-browser")
+
+
 @pytest.fixture(scope="session")
 def browser() -> Iterator[Browser]:
-    program = shutil.which("chromium") or shutil.which("chromium-browser")
+    program = chromium()
     if program is None:
         why = "Chromium not found; on Debian: apt-get install chromium"
         if os.environ.get("EBBLINE_REQUIRE_REAL"):
             pytest.fail(why)
         pytest.skip(why)
     with sync_playwright() as playwright:
-        launched = playwright.chromium.launch(executable_path=program, args=_ARGUMENTS)
+        launched = playwright.chromium.launch(executable_path=program, args=ARGUMENTS)
         yield launched
         launched.close()
 
@@ -72,12 +77,15 @@ def visit(browser: Browser) -> Iterator[Enter]:
     """Enter a site: visit(site), visit(site, size='narrow'), visit(site, scripts=False). At the
     end no visitor may have a complaint."""
     entered: list[Visitor] = []
+    sites: list[Site] = []
 
     def begin(site: Site, *, size: str = "wide", scripts: bool = True) -> Visitor:
+        sites.append(site)
         entered.append(enter(browser, site.address, size=size, scripts=scripts))
         return entered[-1]
 
     yield begin
     for visitor in entered:
         visitor.context.close()
-    assert [complaint for visitor in entered for complaint in visitor.complaints] == []
+    complaints = [complaint for visitor in entered for complaint in visitor.complaints]
+    assert complaints == [], sites[-1].said()

@@ -74,8 +74,11 @@ class Site:
             except (urllib.error.URLError, ConnectionError, TimeoutError):
                 time.sleep(0.1)
         self.stop()
-        said = (self.data / "served.txt").read_text(encoding="utf-8")
-        raise RuntimeError(f"the site did not come up:\n{said}")
+        raise RuntimeError(f"the site did not come up:\n{self.said()}")
+
+    def said(self) -> str:
+        """The end of what the server has logged."""
+        return (self.data / "served.txt").read_text(encoding="utf-8")[-3000:]
 
     def stop(self) -> None:
         if self._running is not None:

@@ -19,8 +19,8 @@ def asked(page: Page) -> dict[str, list[str]]:
 
 def choose_harrowfen(page: Page) -> None:
     page.get_by_label("Indicator").select_option("5q0")
-    page.get_by_label("Northlade").uncheck()
-    page.get_by_label("Harrowfen").check()
+    page.get_by_role("checkbox", name="Northlade").uncheck()
+    page.get_by_role("checkbox", name="Harrowfen").check()
     page.get_by_role("button", name="Draw it").click()
 
 
@@ -60,12 +60,13 @@ def test_with_scripts_the_trend_changes_in_place(demo_site: Site, visit: Enter) 
     assert page.evaluate("() => window.stillHere") is True
     assert page.evaluate("() => document.activeElement.textContent.trim()") == "Draw it"
     chosen = page.url
-    page.go_back()
+    with page.expect_event("domcontentloaded"):  # the page is asked for again
+        page.go_back()
     page.wait_for_url("**of=e0**")
     visitor.drawn()
     assert page.get_by_label("Indicator").input_value() == "e0"
     page.goto(chosen)
-    assert page.get_by_label("Harrowfen").is_checked()
+    assert page.get_by_role("checkbox", name="Harrowfen").is_checked()
 
 
 def test_what_is_copied_from_the_address_bar_shows_the_same(demo_site: Site, visit: Enter) -> None:

@@ -55,7 +55,6 @@ def test_from_a_file_to_a_comparison(empty_site: Site, visit: Enter, scripts: bo
     look(visitor, scripts)
     assert page.locator("select[name='counts.deaths']").input_value() == "deaths"
     assert page.locator("select[name='counts.population']").input_value() == "person_years"
-    assert page.locator("input[name=code_f]").input_value() == "female"
     state_the_basis(visitor)
     look(visitor, scripts)
     assert (
