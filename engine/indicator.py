@@ -12,12 +12,15 @@ from engine.tables import Partials
 @dataclass(frozen=True, slots=True)
 class Unit:
     """What a printed figure counts. The engine speaks per person-year and in years only; `scale`
-    turns its number into the printed one, for display and nowhere else."""
+    turns its number into the printed one, for display and nowhere else. Of a `part` of a whole, a
+    number between 0 and 1, the limits are taken on the scale of log odds, so that they lie there
+    too."""
 
     key: str
     label: str
     scale: float
     decimals: int
+    part: bool = False
 
 
 @dataclass(frozen=True, slots=True)

@@ -8,7 +8,7 @@ from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.special import ndtri
+from scipy.special import expit, logit, ndtri
 
 from engine.ages import Array
 from engine.chain import Chain, gradient, run
@@ -34,22 +34,25 @@ def estimate(
     """The indicator of every population with its interval at the settings' level.
 
     Smooth: value -+ z sqrt(sum g^2 D / E^2), g the gradient in the raw rates, D / E^2 the variance
-    of a rate. Not smooth: quantiles of the values of simulated tables.
+    of a rate; of a part of a whole the same on the scale of log odds. Not smooth: quantiles of the
+    values of simulated tables.
 
     Shape:   panel [..., age], streams [...] (the code of each population) -> [...].
     Missing: a value that may not be read is nan, with its reason. A value may stand without an
              interval: not simulated for want of streams; more than 1 % of the simulated tables
              lack the number (its reason is theirs); no deaths at all behind a smooth number.
     Source:  Chiang (1984), The Life Table and Its Applications, chapter 8 (delta method);
-             Brillinger (1986), Biometrics 42 (Poisson deaths); Andreev & Shkolnikov (2010), MPIDR
-             Technical Report 2010-005 (simulation).
+             Brillinger (1986), Biometrics 42 (Poisson deaths); Agresti (2013), Categorical Data
+             Analysis, chapter 3 (limits on the scale of log odds); Andreev & Shkolnikov (2010),
+             MPIDR Technical Report 2010-005 (simulation).
     """
     chain = run(panel, settings)
     value, reason = _read(indicator, chain)
     if indicator.smooth:
         with np.errstate(all="ignore"):
             variance = (gradient(indicator, chain) ** 2 * chain.rates.variance).sum(axis=-1)
-        return _normal(indicator, value, variance, reason, settings, nothing=Reason.NO_DEATHS)
+        found = _normal(indicator, value, variance, reason, settings, nothing=Reason.NO_DEATHS)
+        return _by_odds(found) if indicator.unit.part else found
     if streams is None:
         return _without(value, reason, Reason.NOT_SIMULATED)
 
@@ -150,6 +153,16 @@ def _normal(
     reason = np.where((reason == Reason.NONE) & ~(half > 0), why, reason).astype(np.uint8)
     half = np.where(half > 0, half, np.nan)
     return Estimate(value, value - half, value + half, reason)
+
+
+def _by_odds(symmetric: Estimate) -> Estimate:
+    """The same limits carried over to log odds: there they lie as far apart to first order, and
+    back on the scale of the value none passes 0 or 1."""
+    value, half = symmetric.value, symmetric.high - symmetric.value
+    with np.errstate(all="ignore"):
+        reach = half / (value * (1 - value))
+        low, high = (expit(logit(value) + side * reach) for side in (-1, 1))
+    return replace(symmetric, low=low, high=high)
 
 
 def _without(value: Array, reason: NDArray[np.uint8], why: Reason) -> Estimate:

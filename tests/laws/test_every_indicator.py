@@ -7,7 +7,9 @@ import pytest
 from hypothesis import HealthCheck, given
 from hypothesis import settings as how
 from numpy.testing import assert_allclose, assert_array_equal
+from scipy.special import logit
 
+from engine.ages import Array
 from engine.chain import gradient, run
 from engine.estimates import Estimate, Reason
 from engine.indicators import INDICATORS, Indicator, difference, estimate, find
@@ -169,9 +171,23 @@ def test_a_hundred_times_the_people_is_a_tenth_of_the_interval(
     small, large = (estimate(indicator, counts, settings) for counts in (panel, larger))
     known = np.isfinite(small.low)
     assert_allclose(large.value[known], small.value[known], rtol=1e-9)
-    assert_allclose(
-        (large.high - large.low)[known], (small.high - small.low)[known] / 10, rtol=1e-6
+    small_width, large_width = (
+        np.diff(scaled(indicator, np.stack([e.low[known], e.high[known]])), axis=0)
+        for e in (small, large)
     )
+    assert_allclose(large_width, small_width / 10, rtol=1e-6)
+
+
+def scaled(indicator: Indicator, limits: Array) -> Array:
+    """On the scale on which limits are taken: that of log odds for a part of a whole."""
+    return logit(limits) if indicator.unit.part else limits
+
+
+@pytest.mark.parametrize("key", ["45q15", "5q0"])
+def test_limits_of_a_part_of_a_whole_lie_between_0_and_1(key: str) -> None:
+    few = gompertz_panel(GRIDS["abridged"], people=6_000)  # the deaths expected, parts of one
+    got = estimate(find(key), few, SETTINGS["almanac-1"])
+    assert 0 < got.low < got.value < got.high < 1
 
 
 @every_chain
