@@ -61,6 +61,10 @@ class _Canvas:
         """As an annotation wants it: on a ratio scale its logarithm."""
         return log10(y) if self.chart.y_log else y
 
+    def lift(self, y: float) -> float:
+        """How far words at this height must rise to stand clear of the rule, px."""
+        return max(0.0, round(0.6 * self.measure.text + 3 - self.py(y)))
+
     def px(self, x: float) -> float:
         low, high = self.chart.x_range
         return (x - low) / (high - low) * self.width
@@ -178,6 +182,7 @@ class _Canvas:
                 y=self.scaled(drop.label_y),
                 yref="y",
                 yanchor="middle",
+                yshift=self.lift(drop.label_y),
                 bgcolor="@ground",
                 borderpad=1,
             )
@@ -260,7 +265,7 @@ class _Canvas:
             y=self.scaled(y),
             yref="y",
             yanchor="middle",
-            yshift=at.dy,
+            yshift=at.dy + self.lift(y),
             align=at.side,
         )
 

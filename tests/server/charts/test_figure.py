@@ -6,7 +6,7 @@ from typing import Any
 import plotly.graph_objects as go
 import pytest
 
-from server.charts.chart import Chart
+from server.charts.chart import At, Chart, Note
 from server.charts.figure import figure
 from server.charts.layout import margins
 from server.charts.template import NARROW, PRINT, WIDE
@@ -165,6 +165,14 @@ def test_words_of_the_figure_are_of_the_catalogue_and_escaped() -> None:
     assert {"a &lt;note&gt;", "mean 82.0", "90,504 reach 65"} <= set(
         words(figure(MARKED, say)["layout"])
     )
+
+
+def test_words_stand_clear_of_the_rule_at_every_height() -> None:
+    low = a_chart(notes=(Note("low", At(50.0, 1.0)), Note("high", At(50.0, 50.0))), size="low")
+    for part in (figure(low, say)["layout"], figure(low, say)["print"]):
+        shift = {note["text"]: note.get("yshift") for note in part["annotations"]}
+        assert shift["low"] > 5
+        assert shift["high"] == 0
 
 
 def test_a_ratio_scale_places_words_by_logarithm() -> None:
