@@ -31,9 +31,9 @@ def _expected(values: Array, place: Ints) -> Array:
     around = np.full((len(NEIGHBOURS), *values.shape), np.nan)
     lines = np.arange(len(place))
     for number, step in enumerate(NEIGHBOURS):
-        other = np.clip(lines + step, 0, len(place) - 1)
-        apart = np.abs(place[other] - place)  # years, within one area and sex
-        near = (apart > 0) & (apart <= max(NEIGHBOURS))
+        other = np.roll(lines, -step)
+        apart = place[other] - place  # years, within one area and sex
+        near = (np.sign(apart) == np.sign(step)) & (np.abs(apart) <= max(NEIGHBOURS))
         around[number, near] = values[other[near]]
     around.sort(axis=0)  # nan last
     count = np.sum(~np.isnan(around[:, :, 0]), axis=0)

@@ -12,7 +12,17 @@ from server.intake.parsing import Handed, parse
 from server.intake.problems import Problem
 from server.store.records import Area, Key
 from tests.server.intake.cases import CASES, ONE, SOUND, WOMEN, Case
-from tests.server.intake.tables import births, counts, csv, deaths, population, rows, setting, where
+from tests.server.intake.tables import (
+    YEARS,
+    births,
+    counts,
+    csv,
+    deaths,
+    population,
+    rows,
+    setting,
+    where,
+)
 
 HERE = Path(__file__).parent
 SENTENCES: dict[str, str] = json.loads((HERE / "sentences.json").read_text(encoding="utf-8"))
@@ -175,6 +185,19 @@ def test_a_jump_is_found_in_the_last_year_too(year: int, trips: bool) -> None:
     picked = where(SOUND, area="north", year=year, sex="f", age="85+")
     (problem,) = problems(counts(setting(SOUND, picked, deaths=1_300)))
     assert (problem.key, problem.values["year"]) == ("jump_of_deaths", str(year))
+
+
+def test_two_years_are_too_few_to_judge_either() -> None:
+    table = rows(years=(2013, 2014))
+    assert keys(counts(setting(table, where(table, year=2014, age="85+"), deaths=1_300))) == []
+
+
+def test_a_year_off_does_not_make_its_neighbours_look_off() -> None:
+    for years in (YEARS, range(2010, 2013)):
+        table = rows(("north",), years=years, sexes="f")
+        picked = where(table, year=years[1], age="85+")
+        found = problems(counts(setting(table, picked, deaths=2_000)))
+        assert [problem.values["year"] for problem in found] == [str(years[1])]
 
 
 def test_a_year_that_is_off_at_all_ages_is_one_problem() -> None:
