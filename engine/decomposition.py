@@ -11,7 +11,7 @@ from engine.chain import Chain, Reading, gradient, run
 from engine.panel import Panel
 from engine.settings import Settings
 from engine.stages.separation import CHILD, FIRST_YEAR, has_child_group, has_first_year
-from engine.streams import poisson_draws
+from engine.streams import pair_draws
 from engine.tables import LifeTable
 from engine.uncertainty import quantiles
 
@@ -81,24 +81,25 @@ def contribution_limits(
     that: Panel,
     settings: Settings,
     *,
-    streams: NDArray[np.str_],
+    streams: tuple[NDArray[np.str_], NDArray[np.str_]],
+    shared: Array | None = None,
     draws: int = 200,
     groups: AgeGrid | None = None,
 ) -> Limits:
     """Limits within which chance in deaths leaves each age's contribution, by keyed simulation.
 
-    Deaths of both populations are drawn anew, person-years and the infants' mix held; the limits
-    are quantiles over the draws at the settings' level. With `groups`, a coarser grid, they are
-    limits of the sums over its groups.
+    Deaths of both populations are drawn anew, those counted in both (`shared`) once, person-years
+    and the infants' mix held; the limits are quantiles over the draws at the settings' level. With
+    `groups`, a coarser grid, they are limits of the sums over its groups.
 
-    Shape:   panels [..., age], streams [...] -> low, high [..., age], or [..., group].
+    Shape:   panels of one shape, shared [..., age], streams of this and of that [...]
+             -> low, high [..., age], or [..., group].
     Missing: nan where more than 1 % of the draws give no figure.
     Raises:  as `contributions` and `poisson_draws`.
     """
-    this, that = (
-        replace(panel, deaths=poisson_draws(panel.deaths, streams, draws, f"contributions, {side}"))
-        for side, panel in (("this", this), ("that", that))
-    )
+    both = np.zeros_like(this.deaths) if shared is None else shared
+    drawn = pair_draws(this.deaths, that.deaths, both, streams, draws, "contributions")
+    this, that = replace(this, deaths=drawn.this), replace(that, deaths=drawn.that)
     by_age = contributions(indicator, this, that, settings).by_age
     if groups is not None:
         by_age = this.grid.regroup(by_age, groups)

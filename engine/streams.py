@@ -1,6 +1,7 @@
 """Chance, keyed by purpose and codes, never by order, split, worker or database id."""
 
 import hashlib
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -44,3 +45,40 @@ def poisson_draws(deaths: Array, streams: NDArray[np.str_], draws: int, purpose:
         mean = np.where(known[row], counts[row], 0.0)
         drawn[:, row] = generator(purpose, code).poisson(mean, (draws, len(mean)))
     return np.where(known, drawn, np.nan).reshape(draws, *deaths.shape)
+
+
+class PairDraws(NamedTuple):
+    """Simulated deaths of two populations, each [draw, ..., age]."""
+
+    this: Array
+    that: Array
+
+
+def pair_draws(
+    this: Array,
+    that: Array,
+    shared: Array,
+    streams: tuple[NDArray[np.str_], NDArray[np.str_]],
+    draws: int,
+    purpose: str,
+) -> PairDraws:
+    """Deaths of two populations that may overlap, as chance might have had them.
+
+    Deaths counted in both are drawn once, from a stream of the pair whatever its order; those of
+    one side only from that side's own stream.
+
+    Shape:   this, that, shared [..., age], streams of this and of that [...].
+    Missing, raises: as `poisson_draws`.
+    """
+    names = tuple(np.asarray(side) for side in streams)
+    pairs = np.array(
+        ["\n".join(sorted(pair)) for pair in zip(*(side.ravel() for side in names), strict=True)],
+        dtype=np.str_,
+    ).reshape(names[0].shape)
+    in_both = poisson_draws(shared, pairs, draws, "deaths in both")
+    return PairDraws(
+        *(
+            in_both + poisson_draws(np.maximum(deaths - shared, 0.0), codes, draws, purpose)
+            for deaths, codes in zip((this, that), names, strict=True)
+        )
+    )

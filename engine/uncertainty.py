@@ -18,7 +18,7 @@ from engine.panel import Panel
 from engine.reasons import judge
 from engine.settings import Settings
 from engine.stages.rates import death_rates
-from engine.streams import poisson_draws
+from engine.streams import pair_draws, poisson_draws
 
 Codes = NDArray[np.str_]
 
@@ -107,20 +107,24 @@ def difference(
         return _normal(indicator, value, variance, reason, settings, nothing=nothing)
     if streams is None:
         return _without(value, reason, Reason.NOT_SIMULATED)
-    sides = _flat(this), _flat(that)
-    names = np.asarray(streams[0]).ravel(), np.asarray(streams[1]).ravel()
-    pairs = np.array(["\n".join(sorted(pair)) for pair in zip(*names, strict=True)], dtype=str)
-    common = both.reshape(len(pairs), -1)
+    here_flat, there_flat = _flat(this), _flat(that)
+    common = both.reshape(here_flat.deaths.shape)
+    names = tuple(np.asarray(side).ravel() for side in streams)
 
     def draw(where: slice) -> Array:
-        in_both = poisson_draws(common[where], pairs[where], settings.draws, "deaths in both")
-
-        def side(panel: Panel, codes: Codes) -> Array:
-            alone = np.maximum(panel.deaths - common, 0.0)[where]
-            deaths = in_both + poisson_draws(alone, codes[where], settings.draws, CHANCE)
-            return _drawn(indicator, panel[where], deaths, settings)
-
-        return side(sides[0], names[0]) - side(sides[1], names[1])
+        drawn = pair_draws(
+            here_flat.deaths[where],
+            there_flat.deaths[where],
+            common[where],
+            (names[0][where], names[1][where]),
+            settings.draws,
+            CHANCE,
+        )
+        upper, lower = (
+            _drawn(indicator, panel[where], deaths, settings)
+            for panel, deaths in ((here_flat, drawn.this), (there_flat, drawn.that))
+        )
+        return upper - lower
 
     return _simulated(indicator, value, reason, draw, settings)
 

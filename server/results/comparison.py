@@ -13,7 +13,7 @@ from engine.estimates import Estimate, Reason
 from engine.panel import Panel
 from engine.settings import Settings
 from engine.tables import LifeTable
-from server.results.estimating import USUAL, differences, estimates, pair_stream, stream
+from server.results.estimating import USUAL, differences, estimates, stream
 from server.results.loading import Holdings, Loaded, holdings, load, overlap, shared_deaths
 from server.results.questions import ComparisonQuestion, PopulationYear
 from server.results.revision import Moved, moved
@@ -89,15 +89,15 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
     loaded = load(session, collection.code, heading.edition.number, asked)
     this, that = _sides(collection.code, question, loaded, settings)
     shared = shared_deaths(loaded.get(both) if both else None, this.panel, that.panel)
+    codes = (stream(collection.code, question.this), stream(collection.code, question.that))
     difference = differences(
         this.estimates,
         this.panel,
         that.panel,
         settings,
-        (stream(collection.code, question.this), stream(collection.code, question.that)),
+        codes,
         shared=shared,
     )
-    codes = pair_stream(collection.code, question.this, question.that)
     groups = _groups(this.panel.grid)
     if question.this == question.that:
         difference = {key: _no_sampling(estimate) for key, estimate in difference.items()}
@@ -113,7 +113,7 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
         overlap=both,
         difference=difference,
         contributions={
-            key: _contribution(key, this, that, settings, codes, groups)
+            key: _contribution(key, this, that, settings, codes, shared, groups)
             for key in DECOMPOSED
             if np.isfinite(difference[key].value)
         },
@@ -172,13 +172,14 @@ def _contribution(
     this: Side,
     that: Side,
     settings: Settings,
-    codes: NDArray[np.str_],
+    codes: tuple[NDArray[np.str_], NDArray[np.str_]],
+    shared: Array | None,
     groups: AgeGrid,
 ) -> Contribution:
     indicator = indicators.find(key)
     parts = decomposition.contributions(indicator, this.panel, that.panel, settings)
     low, high = decomposition.contribution_limits(
-        indicator, this.panel, that.panel, settings, streams=codes, groups=groups
+        indicator, this.panel, that.panel, settings, streams=codes, shared=shared, groups=groups
     )
     return Contribution(
         parts.by_age,

@@ -21,11 +21,6 @@ def stream(collection: str, one: PopulationYear) -> NDArray[np.str_]:
     return np.array(f"{collection}/{one.code}", dtype=np.str_)
 
 
-def pair_stream(collection: str, this: PopulationYear, that: PopulationYear) -> NDArray[np.str_]:
-    """The code the draws of a pair's contributions are keyed by, no batch axes."""
-    return np.array(f"{collection}/{this.code}/{that.code}", dtype=np.str_)
-
-
 def estimates(
     keys: Iterable[str], panel: Panel, settings: Settings, codes: NDArray[np.str_]
 ) -> dict[str, Estimate]:

@@ -327,8 +327,8 @@ def regrouped(sides: list[str], ages: str, open_age: int) -> tuple[str, str]:
 
 def counted_twice(which: str) -> tuple[str, str]:
     return _("Counted in both"), _(
-        "The deaths of {which} are part of both sides. The intervals of the differences count"
-        " them once; those of the ages' contributions take the two sides as independent.",
+        "The deaths of {which} are part of both sides. The intervals of the differences and of the"
+        " ages’ contributions count them once.",
         which=which,
     )
 

@@ -8,8 +8,9 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 import pytest
+from numpy.typing import NDArray
 
-from engine.ages import AgeGrid
+from engine.ages import AgeGrid, Array
 from engine.chain import Reading, run
 from engine.decomposition import arriaga, contribution_limits, contributions
 from engine.indicators import INDICATORS, difference
@@ -212,6 +213,37 @@ def test_arriaga_and_the_line_agree_for_small_differences() -> None:
     np.testing.assert_allclose(line, closed, rtol=0.02, atol=2e-6)
 
 
+def both(panel: Panel) -> tuple[NDArray[np.str_], NDArray[np.str_]]:
+    """Codes of the two sides of a comparison."""
+    return codes(panel, "this"), codes(panel, "that")
+
+
+@pytest.mark.fast
+def test_limits_count_shared_deaths_once() -> None:
+    """Against a whole it is part of, the delta method and the simulated sum agree; taken as
+    independent, the interval would be too wide."""
+    part = gompertz_panel(seed=11, people=3e6, level=2e-5, slope=0.095)
+    rest = gompertz_panel(seed=12, people=1e6, level=4e-5, slope=0.095)
+    whole = replace(part, deaths=part.deaths + rest.deaths, exposure=part.exposure + rest.exposure)
+
+    def width(shared: Array | None) -> float:
+        limits = contribution_limits(
+            INDICATORS["e0"],
+            part,
+            whole,
+            PLAIN,
+            streams=both(part),
+            shared=shared,
+            draws=2000,
+            groups=AgeGrid((0,)),
+        )
+        return float(limits.high[0] - limits.low[0])
+
+    expected = difference(INDICATORS["e0"], part, whole, PLAIN, shared=part.deaths)
+    assert width(part.deaths) == pytest.approx(float(expected.high - expected.low), rel=0.08)
+    assert width(None) > 1.5 * width(part.deaths)
+
+
 @pytest.mark.fast
 def test_limits_are_those_of_the_delta_method_for_large_counts() -> None:
     """The contribution of an age moves with its own two rates, so its variance is nearly theirs."""
@@ -219,7 +251,7 @@ def test_limits_are_those_of_the_delta_method_for_large_counts() -> None:
     that = gompertz_panel(seed=6, people=3e7, level=3e-5, slope=0.095)
     found = contributions(INDICATORS["e0"], this, that, PLAIN).by_age
     limits = contribution_limits(
-        INDICATORS["e0"], this, that, PLAIN, streams=codes(this), draws=2000
+        INDICATORS["e0"], this, that, PLAIN, streams=both(this), draws=2000
     )
     chains = run(this, PLAIN), run(that, PLAIN)
     step = chains[0].rates.mx - chains[1].rates.mx
@@ -235,7 +267,7 @@ def test_limits_of_groups_are_those_of_the_sums() -> None:
     this = gompertz_panel(seed=5, people=3e7, level=2e-5, slope=0.095)
     that = gompertz_panel(seed=6, people=3e7, level=3e-5, slope=0.095)
     whole = contribution_limits(
-        INDICATORS["e0"], this, that, PLAIN, streams=codes(this), draws=400, groups=AgeGrid((0,))
+        INDICATORS["e0"], this, that, PLAIN, streams=both(this), draws=400, groups=AgeGrid((0,))
     )
     assert whole.low.shape == (1,)
     expected = difference(INDICATORS["e0"], this, that, PLAIN)
@@ -246,11 +278,16 @@ def test_limits_of_groups_are_those_of_the_sums() -> None:
 def test_limits_do_not_depend_on_what_else_is_drawn() -> None:
     this = gompertz_panel(seed=7, level=np.array([2e-5, 3e-5, 4e-5]))
     that = gompertz_panel(seed=8, level=np.array([3e-5, 3e-5, 3e-5]))
-    names = codes(this)
+    names = both(this)
     low, high = contribution_limits(INDICATORS["H"], this, that, PLAIN, streams=names, draws=50)
     for row in range(3):
         alone = contribution_limits(
-            INDICATORS["H"], this[row], that[row], PLAIN, streams=names[row], draws=50
+            INDICATORS["H"],
+            this[row],
+            that[row],
+            PLAIN,
+            streams=(names[0][row], names[1][row]),
+            draws=50,
         )
         np.testing.assert_array_equal(alone.low, low[row])
         np.testing.assert_array_equal(alone.high, high[row])
@@ -261,6 +298,6 @@ def test_no_limits_where_many_draws_give_no_figure() -> None:
     """One death expected in the open group: a third of the draws have none, and no e0."""
     this, that = gompertz_panel(seed=9), gompertz_panel(level=4e-5)
     this.deaths[-1] = 1
-    limits = contribution_limits(INDICATORS["e0"], this, that, PLAIN, streams=codes(this))
+    limits = contribution_limits(INDICATORS["e0"], this, that, PLAIN, streams=both(this))
     assert np.isnan(limits.low).all()
     assert np.isnan(limits.high).all()
