@@ -2,6 +2,7 @@
 
 import datetime as dt
 from dataclasses import replace
+from threading import Barrier, Thread
 
 import pytest
 from sqlalchemy.orm import Session, sessionmaker
@@ -164,6 +165,30 @@ def test_an_edition_made_between_the_reading_and_the_writing_is_noticed(
     with pytest.raises(Stale):
         commit(session, first.id)
     assert [one.upload for one in editions.listing(session, "saltmarsh")] == [second.id]
+
+
+def test_of_commits_at_the_same_moment_one_is_made(
+    session: Session, new_session: sessionmaker[Session]
+) -> None:
+    drafts = [checked_upload(session, counts_csv(times=times)).id for times in (1, 2, 3, 4)]
+    start, ends = Barrier(len(drafts)), []
+
+    def work(upload_id: int) -> None:
+        with new_session() as own:
+            start.wait()
+            try:
+                ends.append(commit(own, upload_id, note="n").number)
+            except Exception as error:
+                ends.append(type(error))
+
+    threads = [Thread(target=work, args=(upload_id,)) for upload_id in drafts]
+    for thread in threads:
+        thread.start()
+    for thread in threads:
+        thread.join()
+    assert sorted(ends, key=str) == [1, Stale, Stale, Stale]
+    session.rollback()  # let go what it saw before
+    assert len(editions.listing(session, "saltmarsh")) == 1
 
 
 def test_a_failure_in_the_middle_leaves_nothing(

@@ -1,5 +1,6 @@
 """Editions: what stands, what is refused, and what one statement tells."""
 
+import re
 from collections.abc import Callable
 from contextlib import AbstractContextManager
 from dataclasses import replace
@@ -169,6 +170,16 @@ def test_the_revision_counts_editions_and_events(session: Session) -> None:
     withdrawn(session, 1)
     seen.append(collections.find(session, "saltmarsh").revision)
     assert seen == [0, 1, 2]
+
+
+def test_no_row_of_an_edition_is_ever_changed(session: Session, count_statements: Counting) -> None:
+    with count_statements() as statements:
+        for factor in (1, 2):
+            stored_edition(session, cells(times=factor))
+        withdrawn(session, 2)
+        stored_edition(session, cells(times=3))
+    assert any(one.startswith("INSERT INTO edition ") for one in statements)
+    assert [one for one in statements if re.match("(UPDATE|DELETE FROM) edition ", one)] == []
 
 
 def test_a_heading_is_one_statement(session: Session, count_statements: Counting) -> None:
