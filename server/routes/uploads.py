@@ -1,6 +1,7 @@
 """From files to an edition: /uploads, /uploads/new, /uploads/{upload} and its steps."""
 
 import datetime as dt
+from collections.abc import AsyncIterator
 from typing import Annotated
 
 from fastapi import APIRouter, Depends, Request, Response
@@ -31,9 +32,10 @@ MAY_READ = [needs(Right.READ)]
 MAY_UPLOAD = [needs(Right.UPLOAD)]
 
 
-async def read_form(request: Request) -> FormData:
-    """All fields of a form, files too."""
-    return await request.form()
+async def read_form(request: Request) -> AsyncIterator[FormData]:
+    """All fields of a form, files too; these are closed once the answer is made."""
+    async with request.form() as form:
+        yield form
 
 
 FormDep = Annotated[FormData, Depends(read_form)]

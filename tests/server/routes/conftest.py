@@ -47,3 +47,10 @@ def isle(sqlite_url: str, writer: Session) -> FastAPI:
 def reader(isle: FastAPI) -> Iterator[TestClient]:
     with browser(isle) as client:
         yield client
+
+
+@pytest.fixture
+def blank(sqlite_url: str) -> Iterator[TestClient]:
+    """A reader of an almanac in which nothing stands yet."""
+    with browser(create_app(Config(database_url=sqlite_url))) as client:
+        yield client
