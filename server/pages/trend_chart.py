@@ -121,9 +121,7 @@ def _limits(column: Array) -> Sequence:
 
 
 def _role(found: Series, area: str) -> str:
-    """An area keeps its colour while it stays chosen, as far as the colours go."""
-    places = [one.code for one in found.holdings.areas]
-    if len(places) > COLOURS:
-        places = list(dict.fromkeys(one for one, _sex in found.lines))
-    place = places.index(area)
+    """Colours in the palette's order of use, since its first ones lie farthest apart; beyond the
+    last one a line is thin and named in the table only."""
+    place = list(dict.fromkeys(one for one, _sex in found.lines)).index(area)
     return f"s{place + 1}" if place < COLOURS else "ink-2"

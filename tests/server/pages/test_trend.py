@@ -71,11 +71,11 @@ def test_lines_bands_and_tables_are_the_same_numbers(isle: Session) -> None:
     assert all(low <= value <= high for value in (*line.low, *line.high))  # type: ignore[operator]
 
 
-def test_the_whole_comes_first_and_keeps_its_colour(isle: Session) -> None:
-    both, alone = page(isle, areas=("north", "isle")), page(isle, areas=("north",))
+def test_the_whole_comes_first_and_colours_follow_the_palette(isle: Session) -> None:
+    both = page(isle, areas=("north", "isle"))
     assert words(both).startswith("Women of Isle gained")
     assert "women of North +" in words(both)
-    assert both.charts[0].series[2].role == alone.charts[0].series[0].role
+    assert [series.role for series in both.charts[0].series] == ["s1", "s1", "s2", "s2"]
 
 
 def test_small_populations_are_flagged(isle: Session) -> None:
