@@ -106,24 +106,32 @@ class Problem:
             translate(self.texts.remedy, **values),
         )
 
-    def rows_worded(self, translate: Translate = plain, show: Show = figure) -> str:
-        """ "212", "418 to 430" or "9 between 12 and 301"; empty where no row is to blame."""
+    def rows_worded(
+        self, translate: Translate = plain, show: Show = figure, *, named: bool = False
+    ) -> str:
+        """ "212", "418 to 430" or "9 between 12 and 301", and, if named, that these are rows; empty
+        where no row is to blame."""
         if self.row is None:
             return ""
-        if self.last_row is None or self.last_row == self.row:
-            return show(self.row)
-        ends = {"first": show(self.row), "last": show(self.last_row)}
-        if self.rows == self.last_row - self.row + 1:
-            return translate("{first} to {last}", **ends)
-        return translate("{count} between {first} and {last}", count=show(self.rows), **ends)
+        last = self.row if self.last_row is None else self.last_row
+        if last == self.row:
+            text = "row {first}" if named else "{first}"
+        elif self.rows == last - self.row + 1:
+            text = "rows {first} to {last}" if named else "{first} to {last}"
+        else:
+            text = (
+                "{count} rows between {first} and {last}"
+                if named
+                else ("{count} between {first} and {last}")
+            )
+        return translate(text, first=show(self.row), last=show(last), count=show(self.rows))
 
     def sentence(self, translate: Translate = plain, show: Show = figure) -> str:
         """The whole problem in one line, as a terminal or an error page prints it."""
         words = self.worded(translate, show)
         place = [self.file or translate("the upload")]
-        if rows := self.rows_worded(translate, show):
-            one = self.last_row in (None, self.row)
-            place.append(translate("row {rows}" if one else "rows {rows}", rows=rows))
+        if rows := self.rows_worded(translate, show, named=True):
+            place.append(rows)
         if self.column:
             place.append(translate("column {column}", column=self.column))
         return translate(

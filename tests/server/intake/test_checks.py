@@ -95,6 +95,7 @@ def test_many_rows_with_one_fault_are_one_problem() -> None:
     (problem,) = problems(counts(setting(SOUND, where(SOUND, sex="f"), sex="x")))
     assert (problem.row, problem.last_row, problem.rows) == (2, 134, 70)
     assert problem.rows_worded() == "70 between 2 and 134"
+    assert str(problem).startswith("counts.csv, 70 rows between 2 and 134, column sex: found")
 
 
 def test_rows_in_a_run_are_named_by_their_ends() -> None:
