@@ -1,7 +1,8 @@
 """A page as JSON: its address, what stands beside the figures, and the figures of every table.
 
-The bytes under "figures" depend on the address and the engine alone; numbers are in full, and a gap
-is an object with its kind and reason.
+The bytes under "figures" depend on the address and the engine alone: what may change under an
+address, such as the name of an area, stands elsewhere (notices, the headings under "tables").
+Numbers are in full, and a gap is an object with its kind and reason.
 """
 
 from typing import Any
@@ -23,7 +24,8 @@ def write(twin: Twin) -> bytes:
         "about": _said(twin.about),
         "notices": _said(twin.notices),
         "cautions": _said(twin.cautions),
-        "figures": {table.key: _table(table) for table in twin.tables},
+        "tables": {table.key: _heads(table) for table in twin.tables},
+        "figures": {table.key: _figures(table) for table in twin.tables},
     }
     return orjson.dumps(content, option=orjson.OPT_APPEND_NEWLINE)
 
@@ -32,15 +34,15 @@ def _said(told: tuple[Told, ...]) -> list[dict[str, str]]:
     return [{"word": word, "text": text} for word, text in told]
 
 
-def _table(table: Table) -> dict[str, Any]:
+def _heads(table: Table) -> dict[str, Any]:
+    note = {"note": table.note} if table.note else {}
+    return {"title": table.title, "columns": [*map(_column, table.columns)]} | note
+
+
+def _figures(table: Table) -> dict[str, Any]:
     rows = [_row(table, row) for row in all_rows(table)]
-    total = rows.pop() if table.total else None
-    out: dict[str, Any] = {
-        "title": table.title,
-        "columns": [_column(column) for column in table.columns],
-        "rows": rows,
-    }
-    return out | ({"total": total} if total else {}) | ({"note": table.note} if table.note else {})
+    total = {"total": rows.pop()} if table.total else {}
+    return {"rows": rows} | total
 
 
 def _column(column: Column) -> dict[str, str]:

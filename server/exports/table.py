@@ -45,6 +45,7 @@ class Row:
     provisional: bool = False
     second: str = ""  # second line under the first cell (a unit, a remark)
     href: str = ""
+    shown: str = ""  # printed in place of the first cell: the name behind a code
     decimals: int | None = None  # where every row is in a unit of its own: instead of the column's
 
 

@@ -47,7 +47,7 @@ def areas(found: Contents, newest: Series) -> Table:
 def _area(found: Contents, newest: Series, at: int, lines: range) -> Row:
     """One area; it leads to the first sex that is held."""
     area, settings = found.holdings.areas[at], named.find(found.question.settings)
-    line: list[Cell] = [area.name or area.code]
+    line: list[Cell] = [area.code]
     for index in lines:
         line += cells.triple(newest.estimate[index, 0], INDICATORS["e0"].unit, settings)
     held = [index for index in lines if newest.status[index][0]]
@@ -55,6 +55,7 @@ def _area(found: Contents, newest: Series, at: int, lines: range) -> Row:
         tuple(line),
         provisional=any(newest.status[index][0] == "provisional" for index in held),
         href=_address(found, newest, held[0]) if held else "",
+        shown=area.name,
     )
 
 

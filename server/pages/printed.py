@@ -108,8 +108,10 @@ def _head(column: Column, rows: int) -> Head:
 
 
 def _row(table: Table, row: Row, limits: dict[int, tuple[int, int] | None]) -> PrintedRow:
-    cells = tuple(_cell(table, row, index, pair) for index, pair in limits.items())
-    return PrintedRow(cells, row.second, row.href)
+    first, *others = (_cell(table, row, index, pair) for index, pair in limits.items())
+    if row.shown:
+        first = replace(first, text=row.shown)
+    return PrintedRow((first, *others), row.second, row.href)
 
 
 def _cell(table: Table, row: Row, index: int, pair: tuple[int, int] | None) -> Printed:

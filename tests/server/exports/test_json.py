@@ -12,8 +12,9 @@ def test_what_the_file_holds() -> None:
     content = orjson.loads(json.write(a_twin()))
     assert content["address"] == "/c/x/1/trend?of=e0"
     assert content["notices"] == [{"word": "Withdrawn", "text": "It was withdrawn."}]
-    figures = content["figures"]["years"]
-    assert figures["columns"][2] == {
+    heads, figures = content["tables"]["years"], content["figures"]["years"]
+    assert heads["title"] == YEARS.title
+    assert heads["columns"][2] == {
         "key": "e0",
         "label": "women",
         "unit": "years",
@@ -26,9 +27,11 @@ def test_what_the_file_holds() -> None:
     assert figures["total"] == {"year": "sum", "area": "", "e0": 82.5, "change": 0.375}
 
 
-def test_a_notice_leaves_the_bytes_of_the_figures_as_they_are() -> None:
+def test_notices_and_new_names_leave_the_bytes_of_the_figures_as_they_are() -> None:
     before = json.write(a_twin())
-    after = json.write(replace(a_twin(), notices=()))
+    columns = tuple(replace(column, label="New", span="Names") for column in YEARS.columns)
+    named = (replace(YEARS, title="Another title", columns=columns),)
+    after = json.write(replace(a_twin(), notices=(), tables=named))
     assert before != after
     assert before.partition(b'"figures"')[2] == after.partition(b'"figures"')[2]
 

@@ -60,6 +60,11 @@ def test_only_numbers_are_marked_provisional() -> None:
     assert table.provisional
 
 
+def test_a_name_is_printed_in_place_of_the_code() -> None:
+    table = printed(a_table(Row(("north", 82.0, 81.0, 83.0, 1.0), shown="North and Cape")))
+    assert [cell.text for cell in table.rows[0].cells] == ["North and Cape", "82.0", "+1.0"]
+
+
 def test_a_fraction_needs_decimals() -> None:
     with pytest.raises(ValueError, match=r"table t, column year: 0\.5 needs `decimals`"):
         printed(a_table(Row((0.5, 1.0, 1.0, 1.0, 1.0))))
