@@ -1,0 +1,93 @@
+"""`ebbline figure` prints the numbers of the pages."""
+
+import csv
+import io
+import json
+
+import pytest
+from starlette.testclient import TestClient
+
+from server.app import create_app
+from server.config import Config
+from server.store.connect import make_engine, sessions
+from tests.factories import edition, gompertz_panel
+from tests.server.cli.conftest import Ebbline
+from tests.server.web.site import browser
+
+
+@pytest.fixture
+def isle(sqlite_url: str) -> str:
+    engine = make_engine(sqlite_url)
+    with sessions(engine)() as session:
+        panels = {
+            f"north.{sex}.{year}": gompertz_panel(sex=sex, seed=year, people=1e6)
+            for sex in "fm"
+            for year in (2013, 2014)
+        }
+        panels["rock.f.2014"] = gompertz_panel(seed=1, people=2_000)
+        edition(session, panels, provisional=("2014",))
+    engine.dispose()
+    return sqlite_url
+
+
+def test_the_numbers_are_those_of_the_trend(ebbline: Ebbline, isle: str) -> None:
+    printed = ebbline("figure", "e0", "--collection", "isle", "--as", "csv").out
+    rows = list(csv.DictReader(io.StringIO(printed)))
+    with browser(create_app(Config(database_url=isle))) as client:
+        client: TestClient
+        pinned = client.get("/c/isle/trend.json?of=e0").headers["location"]
+        trend = client.get(pinned).json()["figures"]["estimates"]["rows"]
+    values = {(row["area"], row["sex"], row["year"]): float(row["value"]) for row in rows}
+    assert len(values) == len(trend) == 4
+    assert sorted(values.values()) == sorted(row["value"] for row in trend)
+
+
+def test_gaps_are_named_with_their_reason(ebbline: Ebbline, isle: str) -> None:
+    said = ebbline("figure", "e0", "--collection", "isle", "--area", "rock", "--from", "2014")
+    assert "undefined" in said.out
+    assert "person-years were lived: too few" in said.out
+    assert "not available" in said.out  # no men were counted there
+    assert said.out.splitlines()[0].split() == ["indicator", "area", "sex", "year", "value", "unit"]
+
+
+def test_provisional_years_are_marked(ebbline: Ebbline, isle: str) -> None:
+    lines = ebbline("figure", "e0", "--collection", "isle", "--sex", "f").out.splitlines()
+    assert " p (" not in lines[1]
+    assert " p (" in lines[2]
+    assert lines[-1] == "p: provisional"
+
+
+def test_several_indicators_each_in_its_own_unit(ebbline: Ebbline, isle: str) -> None:
+    said = ebbline(
+        *("figure", "e0", "e33", "5q0", "--collection", "isle", "--sex", "f"),
+        *("--to", "2013", "--as", "json"),
+    )
+    told = json.loads(said.out)
+    rows = told["figures"]["figures"]["rows"]
+    assert [(row["indicator"], row["unit"]) for row in rows] == [
+        ("e0", "years"),
+        ("e33", "years"),
+        ("5q0", "per 1,000 births"),
+    ]
+    assert len(told["address"].split()) == 3
+
+
+@pytest.mark.parametrize(
+    ("words", "sentence"),
+    [
+        (("xx",), "The key “of” has the value “xx”; it can be e0, e65, median"),
+        (("e0", "--collection", "reef"), "There is no collection reef; known: isle."),
+        (("e0", "--edition", "7"), "There is no edition 7; known: 1."),
+        (("e0", "--area", "east"), "north and rock"),
+        (("e0", "--from", "2014", "--to", "2013"), "the first lies after the last"),
+        (("e0", "--from", "14"), "a year has four digits"),
+    ],
+)
+def test_what_cannot_be_printed_is_said_in_a_sentence(
+    ebbline: Ebbline, isle: str, words: tuple[str, ...], sentence: str
+) -> None:
+    collection = () if "--collection" in words else ("--collection", "isle")
+    said = ebbline("figure", *words, *collection)
+    assert said.code == 2
+    assert sentence in said.err
+    assert said.out == ""

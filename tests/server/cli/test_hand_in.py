@@ -1,0 +1,125 @@
+"""`ebbline hand-in`: an edition, or every problem and nothing written."""
+
+from pathlib import Path
+
+import pytest
+
+from tests.factories import counts_csv
+from tests.server.cli.conftest import Ebbline
+
+DENMARK = Path(__file__).parents[2] / "published" / "denmark_deaths_personyears_1974_2012.csv"
+BASIS = (
+    *("--people", "residents", "--dated-by", "death", "--population-is", "person_years"),
+    *("--population-date", "each year", "--source", "civil register"),
+)
+NEW = ("--name", "All deaths", "--owner", "The office", *BASIS)
+
+
+@pytest.fixture
+def counts(tmp_path: Path) -> Path:
+    path = tmp_path / "counts.csv"
+    path.write_bytes(counts_csv())
+    return path
+
+
+def test_a_country_in_one_command(ebbline: Ebbline) -> None:
+    said = ebbline(
+        *("hand-in", "--collection", "dk", "--counts", DENMARK, "--area", "dk=Denmark"),
+        *("--open-age", "--note", "1974 to 2012", *NEW),
+    )
+    assert said.code == 0, said.err
+    assert "7,800 rows were read; 7,800 are sound." in said.out
+    assert "Edition 1 of dk was made" in said.out
+    figures = ebbline("figure", "e0", "--collection", "dk", "--from", "2012").out
+    assert "82.0 (81.9 to 82.2)" in figures
+
+
+def test_errors_are_all_printed_and_nothing_is_written(ebbline: Ebbline, counts: Path) -> None:
+    faulty = counts_csv().replace(b"2001,f,0,north,21", b"2001,f,0,north,minus two")
+    counts.write_bytes(faulty.replace(b"2001,f,5-9", b"2001,q,5-9"))
+    said = ebbline("hand-in", "--collection", "salt", "--counts", counts, *NEW)
+    assert said.code == 2
+    assert "counts.csv, row 2, column deaths: found" in said.out
+    assert "minus two" in said.out
+    assert "column sex" in said.out
+    assert said.err == "Nothing was written.\n"
+    assert "salt" not in ebbline("editions").out
+
+
+def test_checking_alone_writes_nothing(ebbline: Ebbline, counts: Path) -> None:
+    said = ebbline("hand-in", "--check-only", "--counts", counts)
+    assert (said.code, said.err) == (0, "")
+    assert "To be put right: 0" in said.out
+    assert "salt" not in ebbline("editions").out
+
+
+def test_a_later_edition_takes_over_the_basis(
+    ebbline: Ebbline, counts: Path, tmp_path: Path
+) -> None:
+    assert ebbline("hand-in", "--collection", "salt", "--counts", counts, *NEW).code == 0
+    later = tmp_path / "2003.csv"
+    later.write_bytes(counts_csv(years=(2003,)))
+    said = ebbline(
+        *("hand-in", "--collection", "salt", "--counts", later, "--provisional", "2003"),
+        *("--note", "2003 added"),
+    )
+    assert said.code == 0, said.err
+    assert "Edition 2 of salt was made" in said.out
+    assert "2003 added" in ebbline("editions", "--collection", "salt").out
+
+
+def test_columns_can_be_named(ebbline: Ebbline, counts: Path) -> None:
+    counts.write_bytes(counts_csv().replace(b"year,sex,age,area,deaths", b"a,b,c,d,e"))
+    plain = ebbline("hand-in", "--check-only", "--counts", counts)
+    named = ebbline(
+        *("hand-in", "--check-only", "--counts", counts, "--column", "counts.area=d"),
+        *("--column", "year=a", "--column", "sex=b", "--column", "age=c", "--column", "deaths=e"),
+    )
+    assert (plain.code, named.code) == (2, 0)
+
+
+@pytest.mark.parametrize(
+    ("words", "sentence"),
+    [
+        ((), "No file was given. Give --counts FILE"),
+        (("--counts", "nowhere.csv"), "The file nowhere.csv cannot be opened: No such file"),
+        (("--counts", "HERE"), "Say which collection the edition is for: --collection CODE"),
+        (
+            ("--counts", "HERE", "--collection", "reef"),
+            "The basis of the counts is not stated. Give --people, --dated-by",
+        ),
+        (
+            ("--counts", "HERE", "--collection", "reef", *BASIS),
+            "There is no collection reef; there are: none.",
+        ),
+        (
+            ("--counts", "HERE", "--collection", "no code", *NEW),
+            "expected 1 to 32 of the letters",
+        ),
+        (("--counts", "HERE", "--column", "cause=x"), "there is no field cause"),
+    ],
+)
+def test_what_cannot_be_done_is_said_in_a_sentence(
+    ebbline: Ebbline, counts: Path, words: tuple[str, ...], sentence: str
+) -> None:
+    said = ebbline("hand-in", *(str(counts) if word == "HERE" else word for word in words))
+    assert said.code == 2
+    assert sentence in said.err
+    assert "Traceback" not in said.err
+
+
+def test_a_file_over_the_limit_is_not_read(
+    ebbline: Ebbline, counts: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setenv("EBBLINE_UPLOAD_LIMIT", "100")
+    said = ebbline("hand-in", "--check-only", "--counts", counts)
+    assert said.code == 2
+    assert "is larger than" in said.err
+
+
+def test_a_pair_without_its_sign_is_refused(
+    ebbline: Ebbline, counts: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    with pytest.raises(SystemExit, match="2"):
+        ebbline("hand-in", "--counts", counts, "--area", "denmark")
+    assert "“denmark” is not of the form A=B" in capsys.readouterr().err

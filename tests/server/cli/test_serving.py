@@ -1,0 +1,91 @@
+"""`ebbline database`, `serve` and `demo`: the database made, refused where it is not, kept."""
+
+import socket
+from collections.abc import Iterator
+from pathlib import Path
+
+import pytest
+
+from server.cli import main, parser
+from server.cli.refusals import REFUSALS
+
+
+@pytest.fixture
+def taken_port() -> Iterator[int]:
+    """A port another program listens on."""
+    with socket.socket() as held:
+        held.bind(("127.0.0.1", 0))
+        held.listen()
+        yield int(held.getsockname()[1])
+
+
+def test_the_database_is_made_once(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    where = ("--data", str(tmp_path / "new"))
+    assert main(["database", "--say", *where]) == 1
+    assert "There is no database yet at" in capsys.readouterr().out
+    assert main(["database", *where]) == 0
+    assert "The database was made at" in capsys.readouterr().out
+    assert main(["database", *where]) == 0
+    assert "is up to date" in capsys.readouterr().out
+    assert main(["database", "--say", *where]) == 0
+
+
+def test_serve_refuses_a_database_that_is_not_there(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    assert main(["serve", "--data", str(tmp_path)]) == 1
+    assert "Make it: ebbline database" in capsys.readouterr().err
+
+
+def test_a_taken_port_is_said_in_a_sentence(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], taken_port: int
+) -> None:
+    assert main(["database", "--data", str(tmp_path)]) == 0
+    for command in ("serve", "demo"):
+        assert main([command, "--data", str(tmp_path), "--port", str(taken_port)]) == 1
+        said = capsys.readouterr().err
+        assert f"Port {taken_port} on 127.0.0.1 cannot be had" in said
+        assert f"--port {taken_port + 1}" in said
+    assert main(["editions", "--data", str(tmp_path)]) == 0
+    assert "quillmere" not in capsys.readouterr().out  # nothing was loaded
+
+
+def test_a_second_demo_keeps_what_is_there(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    where = ("--data", str(tmp_path))
+    assert main(["demo", "--load-only", *where]) == 0
+    assert "Loading the demonstration collection" in capsys.readouterr().out
+    assert (
+        main(["withdraw", *where, "--collection", "quillmere", "--edition", "2", "--note", "x"])
+        == 0
+    )
+    assert main(["demo", "--load-only", *where]) == 0
+    assert "is there already; nothing was changed" in capsys.readouterr().out
+    assert main(["editions", *where, "--collection", "quillmere"]) == 0
+    assert "withdrawn" in capsys.readouterr().out
+
+
+def test_settings_that_cannot_be_read_are_named(
+    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    monkeypatch.setenv("EBBLINE_PORT", "eighty")
+    assert main(["editions"]) == 2
+    assert "EBBLINE_PORT" in capsys.readouterr().err
+
+
+def test_every_command_explains_itself(capsys: pytest.CaptureFixture[str]) -> None:
+    (commands,) = (action for action in parser()._actions if action.choices)
+    assert set(commands.choices) == {
+        *("demo", "serve", "database", "hand-in", "figure"),
+        *("editions", "withdraw", "reinstate", "rebuild"),
+    }
+    for name in commands.choices:
+        with pytest.raises(SystemExit, match="0"):
+            main([name, "--help"])
+        told = capsys.readouterr().out
+        assert f"ebbline {name}" in told.partition("examples:")[2], name
+
+
+def test_refusals_are_no_programming_errors() -> None:
+    assert not {ValueError, KeyError, TypeError, Exception} & set(REFUSALS)
