@@ -48,6 +48,7 @@ class Asked:
     """What no column says, as far as it is known; the options of what can be chosen."""
 
     mapping: Mapping
+    area_hint: str
     sex_codes: tuple[tuple[str, str, str], ...]  # name in the form, label, text in the file
     delivered: str
     provisional: str
@@ -94,7 +95,7 @@ def build(session: Session, upload_id: int) -> UploadReadingPage:
             _file(file, reading, mapping)
             for (file, reading), mapping in zip(looked, known, strict=True)
         ),
-        asked=_asked(known[0], upload.basis or (standing.basis if standing else UNSTATED)),
+        asked=_asked(known, upload.basis or (standing.basis if standing else UNSTATED)),
     )
 
 
@@ -177,10 +178,14 @@ def _why(found: Recognition, field: str, column: str) -> str:
     return say.confidence("kept", "")
 
 
-def _asked(mapping: Mapping, basis: Basis) -> Asked:
+def _asked(known: list[Mapping], basis: Basis) -> Asked:
+    """What no column says is the same for all files of an upload."""
+    mapping = known[0]
     own = {sex: text for text, sex in mapping.sex_codes}
+    without = any(not (one.area or one.area_name) for one in known)
     return Asked(
         mapping=mapping,
+        area_hint=say.area_hint(without=without),
         sex_codes=(
             ("code_f", _("Women are written as"), own.get("f", "")),
             ("code_m", _("Men are written as"), own.get("m", "")),

@@ -70,6 +70,13 @@ def not_found() -> str:
     return _("no column found")
 
 
+def area_hint(*, without: bool) -> str:
+    """Beside the one area's code; `without`: a file has no column of areas."""
+    if without:
+        return _("needed: no column of areas was found")
+    return _("only where there is no column of areas")
+
+
 def unused(columns: list[tuple[str, str]]) -> str:
     """Columns that are not used, with the reasons; empty where all are."""
     if not columns:
