@@ -80,7 +80,7 @@ def _steps(upload: Upload) -> Sentence:
         return phrase(_("what the checks found"))
     return phrase(
         _("what the checks found, {mapping}"),
-        mapping=Piece(_("how it is read"), f"/uploads/{upload.id}/reading"),
+        mapping=Piece(_("mapping"), f"/uploads/{upload.id}/reading"),
     )
 
 

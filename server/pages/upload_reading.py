@@ -84,7 +84,7 @@ def build(session: Session, upload_id: int) -> UploadReadingPage:
         frame=Frame(
             title=_("How the files are read"),
             address=f"/uploads/{upload.id}/reading",
-            locator=locator(upload, collection, phrase(_("how it is read"))),
+            locator=locator(upload, collection, phrase(_("mapping"))),
             shown=_("Not an edition"),
             nav="upload",
         ),

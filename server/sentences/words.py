@@ -47,6 +47,10 @@ def counting() -> tuple[tuple[str, str], ...]:
             ),
         ),
         (
+            _("mapping"),
+            _("Which column of a file holds what, and what no column says."),
+        ),
+        (
             _("edition"),
             _(
                 "One state of a collection, numbered. It never changes; a correction is a new "
