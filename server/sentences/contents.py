@@ -52,7 +52,7 @@ def newest(area: str, period: str, by_sex: Sequence[tuple[str, Estimate]]) -> Se
     if not known:
         return ()
     parts = [
-        _("{value} years for {sex}", value=shown(one, unit), sex=names.sex(sex))
+        _("{value}\N{NO-BREAK SPACE}years for {sex}", value=shown(one, unit), sex=names.sex(sex))
         for sex, one in known
     ]
     return phrase(

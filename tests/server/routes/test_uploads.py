@@ -86,7 +86,7 @@ def test_the_whole_walk_from_a_file_to_a_comparison(blank: TestClient) -> None:
     assert answer.headers["location"] == "/c/dk/1/contents"
     said = contents(blank, "dk")
     assert "All deaths, Denmark, edition 1: 39 years, 1974 to 2012, one area." in said
-    assert "82.0 years for women and 78.1 years for men" in said
+    assert "82.0\N{NO-BREAK SPACE}years for women and 78.1\N{NO-BREAK SPACE}years for men" in said
     comparison = blank.get("/c/dk/1/comparison?this=dk.f.2012&that=dk.f.1974")
     assert blank.get(comparison.headers["location"]).status_code == 200
 
