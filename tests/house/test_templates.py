@@ -22,16 +22,17 @@ SHARED = {field.name for field in dataclasses.fields(Page)}
 
 
 def page_classes() -> list[type[Page]]:
-    """Every page there is: the subclasses of Page in server/pages."""
-    for module in pkgutil.iter_modules(server.pages.__path__):
+    """Every page there is: the dataclasses with a template in the modules of server/pages."""
+    modules = [
         importlib.import_module(f"server.pages.{module.name}")
-    found, waiting = [], list(Page.__subclasses__())
-    while waiting:
-        page = waiting.pop()
-        waiting += page.__subclasses__()
-        ours = page.__module__.startswith("server.")
-        if ours and "template" in vars(page) and dataclasses.is_dataclass(page):
-            found.append(page)
+        for module in pkgutil.iter_modules(server.pages.__path__)
+    ]
+    found = {
+        kind
+        for module in modules
+        for kind in vars(module).values()
+        if isinstance(kind, type) and issubclass(kind, Page) and "template" in vars(kind)
+    }
     return sorted(found, key=lambda page: page.__name__)
 
 
