@@ -28,8 +28,8 @@ def open_session(request: Request) -> Iterator[Session]:
         yield session
 
 
-def viewer() -> Viewer:
-    """Who asks: on loopback always the one local analyst."""
+async def viewer() -> Viewer:
+    """Who asks: on loopback always the one local analyst. Needs no thread of its own, as Need."""
     return LOCAL
 
 
@@ -43,7 +43,7 @@ class Need:
 
     right: Right
 
-    def __call__(self, viewer: ViewerDep) -> None:
+    async def __call__(self, viewer: ViewerDep) -> None:
         viewer.require(self.right)
 
 

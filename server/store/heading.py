@@ -2,7 +2,7 @@
 
 from dataclasses import dataclass
 
-from sqlalchemy import and_, select
+from sqlalchemy import and_, bindparam, select
 from sqlalchemy.orm import Session
 
 from server.store import collections, editions
@@ -10,6 +10,26 @@ from server.store.errors import Missing
 from server.store.records import Collection as CollectionRecord
 from server.store.records import Edition as EditionRecord
 from server.store.tables import LARGEST, BasisRange, Collection, Edition, EditionEvent
+
+# made once: putting the statement together takes longer than running it
+_STATEMENT = (
+    select(
+        Collection.id.label("collection_id"),
+        Collection.code,
+        Collection.name,
+        Collection.owner,
+        Collection.revision,
+        editions.standing_number(Collection.id).label("newest"),
+        *editions.COLUMNS,
+    )
+    .outerjoin(
+        Edition,
+        and_(Edition.collection_id == Collection.id, Edition.number == bindparam("number")),
+    )
+    .outerjoin(BasisRange, editions.ITS_BASIS)
+    .outerjoin(EditionEvent, editions.ITS_EVENTS)
+    .where(Collection.code == bindparam("code"))
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -24,23 +44,9 @@ def heading(session: Session, collection_code: str, number: int) -> Heading:
 
     Raises: Missing, for the collection or the edition, with those there are.
     """
-    statement = (
-        select(
-            Collection.id.label("collection_id"),
-            Collection.code,
-            Collection.name,
-            Collection.owner,
-            Collection.revision,
-            editions.standing_number(Collection.id).label("newest"),
-            *editions.COLUMNS,
-        )
-        .outerjoin(Edition, and_(Edition.collection_id == Collection.id, Edition.number == number))
-        .outerjoin(BasisRange, editions.ITS_BASIS)
-        .outerjoin(EditionEvent, editions.ITS_EVENTS)
-        .where(Collection.code == collection_code)
-    )
     possible = 0 < number <= LARGEST and "\0" not in collection_code
-    rows = session.execute(statement).all() if possible else []
+    asked = {"code": collection_code, "number": number}
+    rows = session.execute(_STATEMENT, asked).all() if possible else []
     if not rows or rows[0].number is None:
         collections.find(session, collection_code)  # raises where that is what is missing
         known = [one.number for one in editions.listing(session, collection_code)]
