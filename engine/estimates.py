@@ -26,6 +26,8 @@ class Reason(IntEnum):
     NO_SAMPLING_INTERVAL = 10  # a revision: the same deaths counted again
     NOT_SIMULATED = 11  # the indicator has no delta interval, and no stream was given
     WITHHELD = 12
+    OFTEN_LOST = 13  # its value stands, but too many simulated tables lack the number
+    NO_LAW = 14  # no law that rises with age fits the rates below the open age
 
 
 @dataclass(frozen=True, slots=True)

@@ -8,6 +8,7 @@ from engine.ages import Array
 from engine.chain import Chain
 from engine.estimates import Reason
 from engine.indicator import Needs
+from engine.laws import LEAST_AGES
 
 
 def judge(needs: Needs, chain: Chain, value: Array) -> NDArray[np.uint8]:
@@ -20,6 +21,9 @@ def judge(needs: Needs, chain: Chain, value: Array) -> NDArray[np.uint8]:
     shape = value.shape
     span = within(chain.panel.grid, settings.ageing_span)
     off_grid = not all(chain.table.grid.has(age) for age in needs.ages)
+    unfitted = chain.modelled & np.isnan(np.real(chain.table.mx[..., -1]))
+    fitted_to = sum(start >= settings.fit_from for start in chain.panel.grid.starts[:-1])
+    no_law = Reason.NO_LAW if fitted_to >= LEAST_AGES else Reason.TOO_FEW_AGES
     with np.errstate(invalid="ignore"):
         rules = (  # the first that holds is the reason
             (Reason.NOT_AVAILABLE, np.isnan(deaths + exposure).any(axis=-1)),
@@ -27,6 +31,7 @@ def judge(needs: Needs, chain: Chain, value: Array) -> NDArray[np.uint8]:
             (Reason.NO_POPULATION, np.isnan(rates.mx).any(axis=-1)),
             (Reason.NO_DEATHS, deaths.sum(axis=-1) == 0),
             (Reason.AGE_NOT_ON_GRID, np.full(shape, off_grid)),
+            (no_law, (needs.open_small or needs.open_deaths) & unfitted),
             (
                 Reason.OPEN_GROUP_TOO_LARGE,
                 needs.open_small & (chain.open_reach > settings.open_share) & (not chain.modelled),

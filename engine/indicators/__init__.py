@@ -7,9 +7,19 @@ import re
 
 from engine.indicator import Indicator, Needs, Unit
 from engine.indicators import ageing, expectancy, modes, probabilities, spread
-from engine.uncertainty import difference, estimate
+from engine.uncertainty import difference, differences, estimate, estimates
 
-__all__ = ["INDICATORS", "Indicator", "Needs", "Unit", "difference", "estimate", "find"]
+__all__ = [
+    "INDICATORS",
+    "Indicator",
+    "Needs",
+    "Unit",
+    "difference",
+    "differences",
+    "estimate",
+    "estimates",
+    "find",
+]
 
 _ENTRIES = {
     indicator.key: indicator

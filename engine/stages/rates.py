@@ -16,7 +16,6 @@ class Rates:
     deaths: Array
     exposure: Array
     joined: NDArray[np.bool_]  # the group shares its rate with a neighbour
-    variance: Array  # of the raw rate: deaths / exposure^2; 0 where the group lies in a lower one
 
     def pull(self, g: Array) -> Array:
         """Gradient in the raw rates from the gradient in the joined ones: a join's parts add up in
@@ -26,6 +25,16 @@ class Rates:
             g[..., x - 1] += np.where(empty[..., x], g[..., x], 0.0)
             g[..., x] = np.where(empty[..., x], 0.0, g[..., x])
         return g
+
+    def per_death(self, g: Array) -> Array:
+        """What one death more at each age moves, from the gradient in the raw rates: deaths of a
+        join all count in the rate of its lowest group."""
+        with np.errstate(divide="ignore", invalid="ignore"):
+            moved = g / self.exposure
+        for x in range(1, moved.shape[-1]):
+            empty = self.exposure[..., x] == 0
+            moved[..., x] = np.where(empty, moved[..., x - 1], moved[..., x])
+        return moved
 
 
 def death_rates(deaths: Array, exposure: Array) -> Rates:
@@ -44,17 +53,14 @@ def death_rates(deaths: Array, exposure: Array) -> Rates:
         for x in reversed(range(1, pooled.shape[-1])):
             pooled[..., x - 1] += np.where(empty[..., x], pooled[..., x], 0.0)
         mx = np.where(empty, np.nan, pooled / exposure)
-        variance = np.where(empty, 0.0, np.real(pooled) / exposure**2)
     for x in range(1, mx.shape[-1]):
         mx[..., x] = np.where(empty[..., x], mx[..., x - 1], mx[..., x])
     joined = empty.copy()
     joined[..., :-1] |= empty[..., 1:]
-    return Rates(mx, deaths, exposure, joined, variance)
+    return Rates(mx, deaths, exposure, joined & ~np.isnan(mx))
 
 
 def given_rates(mx: Array, exposure: Array) -> Rates:
     """Rates given outright, each group for itself; the deaths are those the exposure implies."""
-    with np.errstate(divide="ignore", invalid="ignore"):
-        variance = np.where(exposure == 0, 0.0, np.real(mx) / exposure)
     joined = np.zeros(np.broadcast_shapes(mx.shape, exposure.shape), dtype=bool)
-    return Rates(mx, mx * exposure, exposure, joined, variance)
+    return Rates(mx, mx * exposure, exposure, joined)

@@ -40,5 +40,11 @@ def reason(code: int, settings: Settings) -> str:
         Reason.WITHHELD: _(
             "It is withheld, since it rests on so few deaths that a person might be recognised."
         ),
+        Reason.OFTEN_LOST: _(
+            "No interval can be given: with slightly other deaths it could often not be read."
+        ),
+        Reason.NO_LAW: _(
+            "No law that rises with age fits the death rates from {age} on.", age=settings.fit_from
+        ),
     }
     return sentences[Reason(code)]

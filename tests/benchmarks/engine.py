@@ -75,7 +75,7 @@ def intervals(grid: str) -> None:
 
     def simulated() -> object:
         deaths = poisson_draws(panel.deaths, chance, PLAIN.draws, "benchmark")
-        return np.quantile(_drawn(E0, panel, deaths, PLAIN), [0.025, 0.975], axis=0)
+        return np.quantile(_drawn([E0], panel, deaths, PLAIN)["e0"], [0.025, 0.975], axis=0)
 
     slow, fast = side_by_side(simulated, lambda: estimate(E0, panel, PLAIN))
     report(f"interval of e0, 40 populations, {grid} ages", ("400 draws", slow), ("delta", fast))

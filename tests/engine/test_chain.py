@@ -50,8 +50,6 @@ def test_the_gradient_through_a_join(settings: Settings) -> None:
         return E0.value(run(panel, settings, mx=mx))
 
     assert largest_error(found, complex_step(value, chain.rates.mx)) < 1e-12
-    variance = (found**2 * chain.rates.variance).sum()
-    assert variance > 0
 
 
 @pytest.mark.fast

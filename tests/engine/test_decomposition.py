@@ -256,7 +256,8 @@ def test_limits_are_those_of_the_delta_method_for_large_counts() -> None:
     chains = run(this, PLAIN), run(that, PLAIN)
     step = chains[0].rates.mx - chains[1].rates.mx
     slope = found / step
-    expected = 2 * 1.96 * np.abs(slope) * np.sqrt(sum(chain.rates.variance for chain in chains))
+    variance = sum(chain.rates.deaths / chain.rates.exposure**2 for chain in chains)
+    expected = 2 * 1.96 * np.abs(slope) * np.sqrt(variance)
     assert ((limits.low < found) & (found < limits.high)).all()
     np.testing.assert_allclose(limits.high - limits.low, expected, rtol=0.15)
 

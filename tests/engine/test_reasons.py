@@ -131,4 +131,12 @@ def test_a_law_that_cannot_be_fitted() -> None:
     coarse = SOUND.regroup(AgeGrid((0, 1, 5, 15, 60, 65, 75, 85)))
     found = reasons(coarse, LAW)
     assert found["e0"] is found["H"] is Reason.TOO_FEW_AGES
+    assert found["mode"] is Reason.TOO_FEW_AGES  # nothing spreads the open group
     assert found["5q0"] is Reason.NONE
+
+
+def test_death_rates_that_no_law_fits() -> None:
+    old = np.array(SOUND.grid.starts) >= 70
+    falling = replace(SOUND, deaths=np.where(old, SOUND.exposure * 0.05, SOUND.deaths))
+    falling.deaths[-2] /= 3
+    assert only(falling, Reason.NO_LAW, LAW) == {"e0", "e65"} | SPREAD

@@ -5,10 +5,12 @@ from dataclasses import replace
 import numpy as np
 import pytest
 from numpy.testing import assert_allclose, assert_array_equal
+from scipy.special import ndtr
 
 from engine.chain import gradient, run
 from engine.estimates import Reason
-from engine.indicators import INDICATORS, difference, estimate, find
+from engine.indicators import INDICATORS, difference, differences, estimate, estimates, find
+from engine.panel import Panel
 from engine.settings import SETTINGS
 from engine.streams import poisson_draws
 from engine.uncertainty import quantiles
@@ -61,6 +63,36 @@ def test_the_variance_of_a_part_against_its_whole_counts_shared_deaths_once() ->
     assert got.high - got.value == pytest.approx(half, rel=1e-9)
 
 
+@pytest.mark.parametrize("key", ["e0", "H", "ageing_rate"])
+def test_shared_deaths_count_in_the_join_each_side_makes(key: str) -> None:
+    """Nobody of the part was counted at 70-74, yet some of its deaths were: they count in the rate
+    of 65-69 there, and in that of 70-74 in the whole. Against steps in each count by itself."""
+    part, rest = gompertz_panel(seed=1), gompertz_panel(seed=2, level=4e-5)
+    part.exposure[part.grid.position(70)] = 0
+    whole = replace(part, deaths=part.deaths + rest.deaths, exposure=part.exposure + rest.exposure)
+    got = difference(find(key), part, whole, SETTINGS_1, shared=part.deaths)
+    ages = len(part.grid)
+    step = np.eye(ages) * 0.01
+
+    def slopes(in_part: float) -> np.ndarray:
+        """By each count of the part (1), or of the rest of the whole (0), on its own."""
+        sides = [
+            find(key).value(
+                run(replace(repeated(panel, ages), deaths=panel.deaths + moved), SETTINGS_1)
+            )
+            for sign in (1, -1)
+            for panel, moved in ((part, sign * in_part * step), (whole, sign * step))
+        ]
+        return (sides[0] - sides[1] - sides[2] + sides[3]) / 0.02
+
+    variance = (slopes(1) ** 2 * part.deaths + slopes(0) ** 2 * rest.deaths).sum()
+    assert got.high - got.value == pytest.approx(1.959963984540054 * np.sqrt(variance), rel=1e-6)
+
+
+def repeated(panel: Panel, times: int) -> Panel:
+    return panel[np.newaxis][np.zeros(times, int)]
+
+
 def test_two_independent_populations_add_their_variances() -> None:
     this, that = gompertz_panel(seed=1), gompertz_panel(seed=2, level=4e-5)
     got = difference(E0, this, that, SETTINGS_1)
@@ -101,14 +133,23 @@ def test_simulated_limits_do_not_depend_on_how_they_are_cut_into_blocks() -> Non
     assert_array_equal(together.low, [one.low for one in alone])
 
 
-def test_limits_are_linear_quantiles_and_stand_if_few_draws_fail() -> None:
+def test_limits_are_quantiles_by_rank_and_stand_if_few_draws_fail() -> None:
     rng = np.random.default_rng(0)
     values = rng.normal(size=(400, 4))
     values[:4, 1], values[:5, 2], values[:, 3] = np.nan, np.nan, np.nan
     got = quantiles(values, 0.95)
-    assert_allclose(got[:, 0], np.quantile(values[:, 0], [0.025, 0.975]), rtol=1e-12)
-    assert_allclose(got[:, 1], np.nanquantile(values[:, 1], [0.025, 0.975]), rtol=1e-12)
+    for column in (0, 1):
+        known = values[~np.isnan(values[:, column]), column]
+        expected = np.quantile(known, [0.025, 0.975], method="weibull")
+        assert_allclose(got[:, column], expected, rtol=1e-12)
     assert np.isnan(got[:, 2:]).all()  # five in four hundred are too many
+
+
+@pytest.mark.parametrize("draws", [40, 400])
+def test_a_further_draw_falls_within_the_limits_as_often_as_the_level_says(draws: int) -> None:
+    values = np.random.default_rng(1).normal(size=(draws, 20_000))
+    low, high = quantiles(values, 0.95)
+    assert np.mean(ndtr(high) - ndtr(low)) == pytest.approx(0.95, abs=0.001)
 
 
 def test_where_the_peak_is_often_lost_the_value_stands_without_an_interval() -> None:
@@ -119,7 +160,7 @@ def test_where_the_peak_is_often_lost_the_value_stands_without_an_interval() -> 
     got = estimate(MODE, panel, modelled, streams=codes(panel))
     assert 95 < got.value < 100
     assert np.isnan(got.low)
-    assert got.reason == Reason.MODE_AT_EDGE
+    assert got.reason == Reason.OFTEN_LOST
 
 
 def test_without_streams_a_number_that_is_not_smooth_has_no_interval() -> None:
@@ -139,6 +180,38 @@ def test_no_deaths_behind_a_number_leave_it_without_an_interval() -> None:
     assert got.value == 0
     assert np.isnan([got.low, got.high]).all()
     assert got.reason == Reason.NO_DEATHS
+
+
+def test_a_difference_from_a_side_without_deaths_has_no_interval() -> None:
+    """The chance of that side is not known; the other's alone would be too narrow."""
+    panel = gompertz_panel(people=100_000)
+    spared = replace(panel, deaths=np.where(np.arange(len(panel.grid)) < 2, 0, panel.deaths))
+    for this, that in ((panel, spared), (spared, panel)):
+        got = difference(find("5q0"), this, that, SETTINGS_1)
+        assert got.value != 0
+        assert np.isnan([got.low, got.high]).all()
+        assert got.reason == Reason.NO_DEATHS
+
+
+@pytest.mark.parametrize("sides", [1, 2])
+def test_many_indicators_are_read_together_as_each_alone(sides: int) -> None:
+    this, that = (
+        gompertz_panel(seed=1, level=np.array([2e-5, 3e-5])),
+        gompertz_panel(seed=2, level=np.array([3e-5, 3e-5])),
+    )
+    names = codes(this, "this"), codes(this, "that")
+    every = list(INDICATORS.values())
+    few = replace(SETTINGS_1, draws=30)
+    if sides == 1:
+        together = estimates(every, this, few, streams=names[0])
+        alone = {one.key: estimate(one, this, few, streams=names[0]) for one in every}
+    else:
+        together = differences(every, this, that, few, streams=names)
+        alone = {one.key: difference(one, this, that, few, streams=names) for one in every}
+    assert list(together) == list(alone)
+    for key in together:
+        for part in ("value", "low", "high", "reason"):
+            assert_array_equal(getattr(together[key], part), getattr(alone[key], part))
 
 
 def test_a_difference_names_what_either_side_lacks() -> None:

@@ -17,7 +17,13 @@ def test_a_run_of_empty_groups_is_joined_with_the_one_below() -> None:
     np.testing.assert_array_equal(
         rates.joined, [[False, True, True, True, False], [False, False, False, True, True]]
     )
-    np.testing.assert_allclose(rates.variance[0], [0.01, 9 / 400, 0, 0, 5 / 2500])
+
+
+@pytest.mark.fast
+def test_a_death_counts_in_the_rate_of_its_join() -> None:
+    rates = death_rates(np.ones(5), np.array([10.0, 20, 0, 0, 50]))
+    g = rates.pull(np.array([1.0, 2, 4, 8, 16]))
+    np.testing.assert_allclose(rates.per_death(g), [0.1, 14 / 20, 14 / 20, 14 / 20, 16 / 50])
 
 
 @pytest.mark.fast
@@ -30,6 +36,7 @@ def test_the_pullback_gathers_a_join_in_its_lowest_group() -> None:
 def test_age_0_has_no_neighbour_below() -> None:
     rates = death_rates(np.array([3.0, 1, 1]), np.array([0.0, 0, 10]))
     np.testing.assert_array_equal(rates.mx, [np.nan, np.nan, 0.1])
+    assert not rates.joined.any()
 
 
 @pytest.mark.fast
