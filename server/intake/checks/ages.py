@@ -25,18 +25,25 @@ def _pairs(rows: Ordered) -> Flags:
     return ~rows.last & ~rows.broken & ~np.roll(_doubled(rows), -1)
 
 
+def _ends(rows: Ordered) -> Ints:
+    """Last age of each row's group, -1 where nothing says it. Beside ranges, a label without an end
+    is a single year of age: the 0 before 1-4."""
+    ranged = np.isin(rows.place, rows.place[rows.end >= 0])
+    return np.where(ranged & (rows.end < 0), rows.start, rows.end)
+
+
 def _closed(rows: Ordered) -> Flags:
-    """A next age that is too far off: after a label with an end, not the age after it; after a
-    label without, no step that single years, 1-4, five or ten years of age take, or a step wider
-    than the one that follows it."""
-    step = _next(rows) - rows.start
+    """A next age that is too far off: after a group with an end, not the age after it; after one
+    without, no step that single years, 1-4, five or ten years of age take, or a step wider than the
+    one that follows it."""
+    end, step = _ends(rows), _next(rows) - rows.start
     usual = (
         (step == 1)
         | ((step == 4) & (rows.start == 1))
         | (((step == 5) | (step == 10)) & (rows.start % 5 == 0))
     )
     narrows = (np.roll(step, -1) < step) & ~np.roll(rows.last, -1)
-    return np.where(rows.end >= 0, _next(rows) > rows.end + 1, ~usual | narrows)
+    return np.where(end >= 0, _next(rows) > end + 1, ~usual | narrows)
 
 
 def _column(rows: Ordered) -> str:
