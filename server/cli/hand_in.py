@@ -8,6 +8,7 @@ from server.accounts.viewer import LOCAL
 from server.actions.check_upload import check_upload
 from server.actions.commit_upload import commit_upload
 from server.actions.create_collection import create_collection
+from server.actions.discard_upload import discard_upload
 from server.actions.map_upload import map_upload
 from server.actions.receive_upload import receive_upload
 from server.cli import reading
@@ -19,9 +20,10 @@ from server.intake.parsing import Handed, parse
 from server.intake.report import Report
 from server.sentences import uploads as say
 from server.sentences.numbers import whole
-from server.sentences.text import _
+from server.sentences.text import _, n_
 from server.store import collections, editions
 from server.store.connect import Session
+from server.store.errors import Refused
 from server.store.records import Basis
 
 
@@ -71,14 +73,21 @@ def run(asked: argparse.Namespace, config: Config) -> int:
     if not asked.collection:
         raise Declined(_("Say which collection the edition is for: --collection CODE"))
     with opened(config) as session:
-        return _commit(session, asked, files, limit=config.upload_limit)
+        return _commit(session, asked, files, report, limit=config.upload_limit)
 
 
-def _commit(session: Session, asked: argparse.Namespace, files: list[Handed], *, limit: int) -> int:
+def _commit(
+    session: Session,
+    asked: argparse.Namespace,
+    files: list[Handed],
+    report: Report,
+    *,
+    limit: int,
+) -> int:
     now = dt.datetime.now(dt.UTC)
     if not any(one.code == asked.collection for one in collections.all_collections(session)):
         basis = reading.basis(asked, None)
-        _open(session, asked, now)
+        _open(session, asked, report, now)
     else:
         basis = reading.basis(asked, _standing_basis(session, asked.collection))
     upload = receive_upload(
@@ -92,7 +101,11 @@ def _commit(session: Session, asked: argparse.Namespace, files: list[Handed], *,
     mappings = {file.role: file.mapping for file in files}
     map_upload(session, upload_id=upload.id, mappings=mappings, basis=basis, by=LOCAL, now=now)
     check_upload(session, upload_id=upload.id)
-    edition = commit_upload(session, upload_id=upload.id, note=asked.note, by=LOCAL, now=now)
+    try:
+        edition = commit_upload(session, upload_id=upload.id, note=asked.note, by=LOCAL, now=now)
+    except Refused:  # the files are still where they were: no draft of them is needed
+        discard_upload(session, upload_id=upload.id, by=LOCAL)
+        raise
     print(
         _(
             "Edition {number} of {collection} was made; content {digest}.",
@@ -104,8 +117,8 @@ def _commit(session: Session, asked: argparse.Namespace, files: list[Handed], *,
     return 0
 
 
-def _open(session: Session, asked: argparse.Namespace, now: dt.datetime) -> None:
-    """Open the collection that --name and --owner describe."""
+def _open(session: Session, asked: argparse.Namespace, report: Report, now: dt.datetime) -> None:
+    """Open the collection that --name and --owner describe, unless no edition would come of it."""
     if not asked.name or not asked.owner:
         known = [one.code for one in collections.all_collections(session)]
         raise Declined(
@@ -114,6 +127,16 @@ def _open(session: Session, asked: argparse.Namespace, now: dt.datetime) -> None
                 "--name and --owner to open it.",
                 code=asked.collection,
                 known=", ".join(known) or _("none"),
+            )
+        )
+    if report.warnings and not asked.note.strip():
+        raise Declined(
+            n_(
+                "There is one warning and no note. Look at it; then say with --note why the "
+                "figures may stand.",
+                "There are {count} warnings and no note. Look at each; then say with --note why "
+                "the figures may stand.",
+                len(report.warnings),
             )
         )
     create_collection(

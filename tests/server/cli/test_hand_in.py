@@ -1,5 +1,7 @@
 """`ebbline hand-in`: an edition, or every problem and nothing written."""
 
+import sqlite3
+from contextlib import closing
 from pathlib import Path
 
 import pytest
@@ -44,6 +46,31 @@ def test_errors_are_all_printed_and_nothing_is_written(ebbline: Ebbline, counts:
     assert "column sex" in said.out
     assert said.err == "Nothing was written.\n"
     assert "salt" not in ebbline("editions").out
+
+
+def test_warnings_want_a_note_and_leave_nothing_behind_without_it(
+    ebbline: Ebbline, counts: Path, sqlite_url: str
+) -> None:
+    told = ("hand-in", "--collection", "salt", "--counts", counts)
+    doubtful = counts_csv(years=(2003,)).replace(
+        b"2003,f,5-9,north,23,9021", b"2003,f,5-9,north,23,0"
+    )
+    counts.write_bytes(doubtful)
+    said = ebbline(*told, *NEW)
+    assert said.code == 2
+    assert "There is one warning and no note. Look at it; then say with --note why" in said.err
+    assert "salt" not in ebbline("editions").out
+    counts.write_bytes(counts_csv())
+    assert ebbline(*told, *NEW).code == 0
+    counts.write_bytes(doubtful)
+    said = ebbline(*told)
+    assert said.code == 2
+    assert "and no note" in said.err
+    assert ebbline(*told, "--note", "The district moved away.").code == 0
+    last = ebbline("editions", "--collection", "salt", "--as", "csv").out.splitlines()
+    assert [line.split(",")[0] for line in last] == ["edition", "2", "1"]
+    with closing(sqlite3.connect(sqlite_url.removeprefix("sqlite:///"))) as database:
+        assert database.execute("SELECT count(*) FROM upload").fetchone() == (2,)
 
 
 def test_checking_alone_writes_nothing(ebbline: Ebbline, counts: Path) -> None:
