@@ -72,7 +72,7 @@ def test_a_picture_of_a_chart_can_be_taken_away(demo_site: Site, visit: Enter) -
     page = visitor.goto(READ["trend"])
     visitor.drawn()
     with page.expect_download() as taken:
-        page.get_by_role("button", name="picture").first.click()
+        page.get_by_role("link", name="picture").first.click()
     assert taken.value.suggested_filename.endswith(".svg")
     assert "<svg" in taken.value.path().read_text(encoding="utf-8")
 
