@@ -16,7 +16,7 @@ from engine.panel import SEXES
 from server.sentences.text import _
 
 CODE = re.compile(r"[A-Za-z0-9_.-]{1,32}")
-PERIOD = re.compile(r"\d{4}")
+PERIOD = re.compile(r"[0-9]{4}")
 FIGURES = ("released", "full")
 DEFAULT_SETTINGS = "almanac-1"
 DEFAULT_INDICATOR = "e0"
@@ -220,7 +220,7 @@ def address(
 ) -> str:
     """Where a question is answered; `twin` is csv, xlsx or json, `table` the one a CSV holds."""
     suffix = f".{twin}" if twin else ""
-    chosen = f"&table={table}" if table else ""
+    chosen = f"&{urlencode({'table': table})}" if table else ""
     return f"/c/{collection}/{edition}/{question.view}{suffix}?{question.canonical()}{chosen}"
 
 

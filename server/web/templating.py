@@ -7,7 +7,7 @@ import re
 from collections.abc import Callable, Iterable, Mapping
 from types import SimpleNamespace
 from typing import Any
-from urllib.parse import quote
+from urllib.parse import urlencode
 
 import orjson
 from jinja2 import Environment, FileSystemLoader, StrictUndefined, Template
@@ -90,7 +90,7 @@ def place(items: Iterable[Any], key: str) -> int:
 def of_table(address: str, key: str) -> str:
     """The address of a twin that holds one table."""
     joint = "&" if "?" in address else "?"
-    return f"{address}{joint}table={quote(key)}" if key else address
+    return f"{address}{joint}{urlencode({'table': key})}" if key else address
 
 
 def symbols(text: str) -> Markup:
