@@ -157,7 +157,17 @@ def differences(
         lower = _drawn(stepped, there_flat[where], drawn.that, settings)
         return {key: upper[key] - lower[key] for key in upper}
 
-    return found | _simulated(indicators, found, draw, settings)
+    alike = ((this.deaths == both) & (that.deaths == both)).all(axis=-1)
+    alike &= (this.exposure == that.exposure).all(axis=-1)
+    return found | {
+        key: _within(
+            drawn,
+            np.where(alike, np.nan, drawn.low),
+            drawn.high,
+            np.where(alike, Reason.NO_SAMPLING_INTERVAL, drawn.reason),
+        )
+        for key, drawn in _simulated(indicators, found, draw, settings).items()
+    }
 
 
 def _by_death(indicator: Indicator, chain: Chain) -> Array:

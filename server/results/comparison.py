@@ -1,6 +1,8 @@
 """Two population-years and the explained difference between them: this less that."""
 
-from dataclasses import dataclass, replace
+from collections.abc import Sequence
+from dataclasses import dataclass
+from functools import reduce
 
 import numpy as np
 from numpy.typing import NDArray
@@ -9,7 +11,7 @@ from engine import decomposition, indicators
 from engine import settings as named
 from engine.ages import AgeGrid, Array
 from engine.chain import run
-from engine.estimates import Estimate, Reason
+from engine.estimates import Estimate
 from engine.panel import Panel
 from engine.settings import Settings
 from engine.tables import LifeTable
@@ -58,10 +60,10 @@ class Comparison:
     groups: AgeGrid  # the same in groups of at least five years after the first, for pictures
     this: Side
     that: Side
-    overlap: PopulationYear | None  # deaths counted in both
+    overlap: PopulationYear | None  # deaths counted in both; None also where they are not held
     difference: dict[str, Estimate]
     contributions: dict[str, Contribution]  # by indicator; missing where one side is undefined
-    arriaga: Array  # [age], for e0
+    arriaga: Array  # [age] of `grid`, for e0
     moved: Moved | None
 
     @property
@@ -79,34 +81,35 @@ class Comparison:
 
 def comparison(session: Session, heading: Heading, question: ComparisonQuestion) -> Comparison:
     """Load both, bring them to one grid, take the difference apart. NotInEdition."""
-    collection = heading.collection
+    collection, number = heading.collection.code, heading.edition.number
     settings = named.find(question.settings)
-    held = holdings(session, collection.code, heading.edition.number)
+    held = holdings(session, collection, number)
     for wanted in (question.this, question.that):
         held.require(wanted)
     both = overlap(question.this, question.that, held.areas)
-    asked = [question.this, question.that, *([both] if both else [])]
-    loaded = load(session, collection.code, heading.edition.number, asked)
-    this, that = _sides(collection.code, question, loaded, settings)
-    shared = shared_deaths(loaded.get(both) if both else None, this.panel, that.panel)
-    codes = (stream(collection.code, question.this), stream(collection.code, question.that))
-    difference = differences(
-        this.estimates,
-        this.panel,
-        that.panel,
-        settings,
-        codes,
-        shared=shared,
+    asked = tuple(dict.fromkeys((question.this, question.that, *([both] if both else []))))
+    loaded = load(session, collection, number, asked)
+    for wanted in (question.this, question.that):
+        if wanted not in loaded:
+            raise held.lacks(wanted)
+    if both not in loaded:
+        both = None
+    grid = _shared_grid(loaded)
+    keys = USUAL if question.of in USUAL else (*USUAL, question.of)
+    this, that = (
+        _side(collection, one, loaded[one], grid, settings, keys)
+        for one in (question.this, question.that)
     )
-    groups = _groups(this.panel.grid)
-    if question.this == question.that:
-        difference = {key: _no_sampling(estimate) for key, estimate in difference.items()}
+    shared = shared_deaths(loaded[both].panel, this.panel, that.panel) if both else None
+    codes = (stream(collection, question.this), stream(collection, question.that))
+    difference = differences(keys, this.panel, that.panel, settings, codes, shared=shared)
+    groups = _groups(grid)
     return Comparison(
         heading=heading,
         holdings=held,
         question=question,
         settings=settings,
-        grid=this.panel.grid,
+        grid=grid,
         groups=groups,
         this=this,
         that=that,
@@ -117,50 +120,45 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
             for key in DECOMPOSED
             if np.isfinite(difference[key].value)
         },
-        arriaga=decomposition.arriaga(this.table, that.table),
-        moved=moved(
-            session,
-            heading,
-            asked[:2],
-            lambda newer: headline(question, newer, settings),
-        ),
+        arriaga=_on(grid, decomposition.arriaga(this.table, that.table)),
+        moved=moved(session, heading, asked, lambda newer: _headline(question, newer, settings)),
     )
 
 
-def headline(
+def _headline(
     question: ComparisonQuestion, loaded: dict[PopulationYear, Loaded], settings: Settings
 ) -> float:
-    """The difference asked for; KeyError where one of the two was not loaded."""
-    this, that = loaded[question.this].panel, loaded[question.that].panel
-    grid = this.grid.common(that.grid)
-    indicator = indicators.find(question.of)
-    return float(
-        indicators.difference(indicator, this.regroup(grid), that.regroup(grid), settings).value
-    )
+    """The difference asked for, as the page of these population-years has it; nan where one of the
+    two is not held."""
+    if not {question.this, question.that} <= loaded.keys():
+        return np.nan
+    grid = _shared_grid(loaded)
+    this, that = (loaded[one].panel.regroup(grid) for one in (question.this, question.that))
+    return float(indicators.difference(indicators.find(question.of), this, that, settings).value)
 
 
-def _sides(
+def _shared_grid(loaded: dict[PopulationYear, Loaded]) -> AgeGrid:
+    """The finest to which both sides, and what is counted in both, can be summed."""
+    return reduce(AgeGrid.common, (one.panel.grid for one in loaded.values()))
+
+
+def _side(
     collection: str,
-    question: ComparisonQuestion,
-    loaded: dict[PopulationYear, Loaded],
+    of: PopulationYear,
+    loaded: Loaded,
+    grid: AgeGrid,
     settings: Settings,
-) -> tuple[Side, Side]:
-    keys = USUAL if question.of in USUAL else (*USUAL, question.of)
-    wanted = (question.this, question.that)
-    grid = loaded[wanted[0]].panel.grid.common(loaded[wanted[1]].panel.grid)
-    sides = []
-    for one in wanted:
-        panel = loaded[one].panel.regroup(grid)
-        sides.append(
-            Side(
-                one,
-                loaded[one],
-                panel,
-                run(panel, settings).table,
-                estimates(keys, panel, settings, stream(collection, one)),
-            )
-        )
-    return sides[0], sides[1]
+    keys: Sequence[str],
+) -> Side:
+    panel = loaded.panel.regroup(grid)
+    found = estimates(keys, panel, settings, stream(collection, of))
+    return Side(of, loaded, panel, run(panel, settings).table, found)
+
+
+def _on(grid: AgeGrid, by_age: Array) -> Array:
+    """What a table's ages hold, a law's single years summed into the open group they spread."""
+    last = len(grid) - 1
+    return np.append(by_age[:last], by_age[last:].sum())
 
 
 def _groups(grid: AgeGrid) -> AgeGrid:
@@ -188,16 +186,4 @@ def _contribution(
         high,
         float(parts.remainder),
         float(parts.difference),
-    )
-
-
-def _no_sampling(estimate: Estimate) -> Estimate:
-    """The same deaths on both sides: the difference is exact."""
-    gap = np.full_like(estimate.value, np.nan)
-    known = estimate.reason == Reason.NONE
-    return replace(
-        estimate,
-        low=gap,
-        high=gap,
-        reason=np.where(known, Reason.NO_SAMPLING_INTERVAL, estimate.reason).astype(np.uint8),
     )

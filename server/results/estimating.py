@@ -25,10 +25,7 @@ def estimates(
     keys: Iterable[str], panel: Panel, settings: Settings, codes: NDArray[np.str_]
 ) -> dict[str, Estimate]:
     """Each indicator of a panel; `codes` has the panel's batch shape."""
-    return {
-        key: indicators.estimate(indicators.find(key), panel, settings, streams=codes)
-        for key in keys
-    }
+    return indicators.estimates(_found(keys), panel, settings, streams=codes)
 
 
 def differences(
@@ -42,9 +39,8 @@ def differences(
 ) -> dict[str, Estimate]:
     """This less that, both on one grid; `shared` deaths are counted once. `codes` are this one's
     and that one's."""
-    return {
-        key: indicators.difference(
-            indicators.find(key), this, that, settings, shared=shared, streams=codes
-        )
-        for key in keys
-    }
+    return indicators.differences(_found(keys), this, that, settings, shared=shared, streams=codes)
+
+
+def _found(keys: Iterable[str]) -> list[indicators.Indicator]:
+    return [indicators.find(key) for key in keys]

@@ -58,13 +58,17 @@ class Holdings:
 
     def require(self, wanted: PopulationYear) -> None:
         """NotInEdition where the edition does not hold it."""
-        if wanted in self.status:
-            return
+        if wanted not in self.status:
+            raise self.lacks(wanted)
+
+    def lacks(self, wanted: PopulationYear) -> NotInEdition:
+        """What is said of a population-year without counts, or with one measure alone."""
         periods = self.periods
-        raise NotInEdition(
+        return NotInEdition(
             _(
-                "This edition does not hold {code}. Its areas are {areas}; its sexes {sexes}; its"
-                " years {first} to {last}. Choose among these.",
+                "This edition does not hold {code}, or not both its deaths and its person-years."
+                " Its areas are {areas}; its sexes {sexes}; its years {first} to {last}. Choose"
+                " among these.",
                 code=wanted.code,
                 areas=listed([area.code for area in self.areas], most=12),
                 sexes=listed(self.sexes),
@@ -181,12 +185,10 @@ def _lineage(area: str, parents: dict[str, str]) -> Iterable[str]:
         area = parents.get(area, "")
 
 
-def shared_deaths(shared: Loaded | None, this: Panel, that: Panel) -> Array | None:
-    """Deaths counted in both panels, on the grid they share; None where there are none.
+def shared_deaths(shared: Panel, this: Panel, that: Panel) -> Array:
+    """Deaths counted in both panels, on the grid they share.
 
     An area delivered as such may count fewer than its parts do: no more are shared than it counts.
     """
-    if shared is None:
-        return None
-    both = shared.panel.regroup(this.grid).deaths
+    both = shared.regroup(this.grid).deaths
     return np.minimum(both, np.minimum(this.deaths, that.deaths))

@@ -77,6 +77,8 @@ def population_year(
     previous = held.previous(question.of)
     wanted = [question.of, *([previous] if previous else [])]
     loaded = load(session, collection, number, wanted)
+    if question.of not in loaded:
+        raise held.lacks(question.of)
     panel = loaded[question.of].panel
     chain = run(panel, settings)
     return Findings(
@@ -88,13 +90,13 @@ def population_year(
         chain=chain,
         estimates=estimates(USUAL, panel, settings, stream(collection, question.of)),
         before=_before(collection, question.of, previous, loaded, settings),
-        rises=ageing.rises(panel),
+        rises=ageing.rises(panel, level=settings.level),
         gain=sensitivity.gain_per_percent(indicators.find("e0"), chain),
         moved=moved(
             session,
             heading,
             [question.of],
-            lambda newer: _life_expectancy(newer[question.of], settings),
+            lambda newer: _life_expectancy(newer.get(question.of), settings),
         ),
     )
 
@@ -124,7 +126,9 @@ def _before(
     )
 
 
-def _life_expectancy(loaded: Loaded, settings: Settings) -> float:
+def _life_expectancy(loaded: Loaded | None, settings: Settings) -> float:
+    if loaded is None:
+        return np.nan
     return float(indicators.estimate(indicators.find("e0"), loaded.panel, settings).value)
 
 

@@ -4,8 +4,6 @@ import datetime as dt
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 
-import numpy as np
-
 from server.results.loading import Loaded, load
 from server.results.questions import PopulationYear
 from server.store import editions
@@ -34,8 +32,7 @@ def moved(
 ) -> Moved | None:
     """None where no edition newer than the heading's stands.
 
-    `headline` answers from the population-years wanted; a KeyError in it means that the newer
-    edition lacks one of them.
+    `headline` answers from those of the population-years wanted that the newer edition holds.
     """
     if heading.newest is None or heading.newest <= heading.edition.number:
         return None
@@ -43,8 +40,4 @@ def moved(
     if newer is None:
         return None
     held = load(session, heading.collection.code, newer.number, wanted)
-    try:
-        value = headline(held)
-    except KeyError:
-        value = np.nan
-    return Moved(newer.number, newer.made, value)
+    return Moved(newer.number, newer.made, headline(held))

@@ -1,7 +1,8 @@
 """One indicator through the years, for chosen areas and sexes: the trend's numbers."""
 
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
-from typing import NamedTuple, TypeVar
+from typing import TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -51,7 +52,8 @@ class Series:
     middle: tuple[str, ...]  # [line]: the year with a value in the middle of them; "" where none
     earlier: Estimate  # [line]: the change up to the middle year
     later: Estimate  # [line]: the change from it on
-    moved: Moved | None  # the first line's last figure in a newer edition
+    headline: PopulationYear  # the first line's newest figure, by which a newer edition is measured
+    moved: Moved | None
 
 
 def series(session: Session, heading: Heading, question: TrendQuestion) -> Series:
@@ -72,8 +74,9 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
     ]
     ends = tuple(_ends(row, periods) for row in estimate.value)
     middle = tuple(_middle(row, periods) for row in estimate.value)
-    spans = _spans(ends, middle)
+    changes = _changes(collection, lines, _spans(ends, middle), loaded, indicator, settings)
     found = [loaded.get(one) for one in wanted]
+    headline = PopulationYear(*lines[0], _newest(estimate.value[0], periods))
     return Series(
         heading=heading,
         holdings=held,
@@ -87,10 +90,16 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
         open_ages=_rows([one.panel.grid.open_age if one else None for one in found], len(periods)),
         ends=ends,
         middle=middle,
-        change=_changes(collection, lines, spans.whole, loaded, indicator, settings),
-        earlier=_changes(collection, lines, spans.earlier, loaded, indicator, settings),
-        later=_changes(collection, lines, spans.later, loaded, indicator, settings),
-        moved=_moved(session, heading, lines[0], ends[0], indicator, settings),
+        change=changes[0],
+        earlier=changes[1],
+        later=changes[2],
+        headline=headline,
+        moved=moved(
+            session,
+            heading,
+            [headline],
+            lambda newer: _figure(newer.get(headline), indicator, settings),
+        ),
     )
 
 
@@ -144,20 +153,41 @@ def _by_grid(
     settings: Settings,
 ) -> Estimate:
     """One estimate a population-year, [wanted]; those not held say so."""
-    count = len(wanted)
-    values, lows, highs = (np.full(count, np.nan) for _part in range(3))
-    reasons = np.full(count, Reason.NOT_AVAILABLE, np.uint8)
+
+    def read(grid: AgeGrid, places: list[int]) -> Estimate:
+        ones = [wanted[at] for at in places]
+        panel, codes = _stacked(ones, loaded, grid), _codes(collection, ones)
+        return indicators.estimate(indicator, panel, settings, streams=codes)
+
+    grids = [loaded[one].panel.grid if one in loaded else None for one in wanted]
+    return _scattered(grids, read)
+
+
+def _stacked(
+    ones: Sequence[PopulationYear], loaded: dict[PopulationYear, Loaded], grid: AgeGrid
+) -> Panel:
+    return Panel.stack([loaded[one].panel.regroup(grid) for one in ones])
+
+
+def _codes(collection: str, ones: Sequence[PopulationYear]) -> NDArray[np.str_]:
+    return np.stack([stream(collection, one) for one in ones])
+
+
+def _scattered(
+    grids: list[AgeGrid | None], read: Callable[[AgeGrid, list[int]], Estimate]
+) -> Estimate:
+    """What is read of the places of each grid in one call, put where it belongs; the places without
+    a grid say that nothing is held."""
     places: dict[AgeGrid, list[int]] = {}
-    for index, one in enumerate(wanted):
-        if one in loaded:
-            places.setdefault(loaded[one].panel.grid, []).append(index)
-    for indexes in places.values():
-        panel = Panel.stack([loaded[wanted[index]].panel for index in indexes])
-        codes = np.stack([stream(collection, wanted[index]) for index in indexes])
-        part = indicators.estimate(indicator, panel, settings, streams=codes)
-        values[indexes], lows[indexes], highs[indexes] = part.value, part.low, part.high
-        reasons[indexes] = part.reason
-    return Estimate(values, lows, highs, reasons)
+    for place, own in enumerate(grids):
+        if own is not None:
+            places.setdefault(own, []).append(place)
+    value, low, high = (np.full(len(grids), np.nan) for _part in range(3))
+    reason = np.full(len(grids), Reason.NOT_AVAILABLE, np.uint8)
+    for grid, at in places.items():
+        part = read(grid, at)
+        value[at], low[at], high[at], reason[at] = part.value, part.low, part.high, part.reason
+    return Estimate(value, low, high, reason)
 
 
 def _ends(values: NDArray[np.float64], periods: tuple[str, ...]) -> tuple[str, str] | None:
@@ -167,44 +197,33 @@ def _ends(values: NDArray[np.float64], periods: tuple[str, ...]) -> tuple[str, s
     return periods[known[0]], periods[known[-1]]
 
 
-def _moved(
-    session: Session,
-    heading: Heading,
-    line: tuple[str, str],
-    ends: tuple[str, str] | None,
-    indicator: Indicator,
-    settings: Settings,
-) -> Moved | None:
-    if ends is None:
-        return None
-    one = PopulationYear(*line, ends[1])
-    return moved(
-        session,
-        heading,
-        [one],
-        lambda newer: float(indicators.estimate(indicator, newer[one].panel, settings).value),
-    )
+def _newest(values: NDArray[np.float64], periods: tuple[str, ...]) -> str:
+    """The last year with a value; the last year of all where none has one."""
+    known = np.flatnonzero(np.isfinite(values))
+    return periods[known[-1]] if len(known) else periods[-1]
+
+
+def _figure(loaded: Loaded | None, indicator: Indicator, settings: Settings) -> float:
+    if loaded is None:
+        return np.nan
+    return float(indicators.estimate(indicator, loaded.panel, settings).value)
 
 
 def _middle(values: NDArray[np.float64], periods: tuple[str, ...]) -> str:
     known = np.flatnonzero(np.isfinite(values))
     if len(known) < 5:  # fewer years have no halves worth telling apart
         return ""
-    centre = (known[0] + known[-1]) / 2
-    return periods[int(known[np.argmin(np.abs(known - centre))])]
+    years = np.array([int(periods[at]) for at in known])
+    return periods[int(known[np.argmin(np.abs(years - (years[0] + years[-1]) / 2))])]
 
 
-class _Spans(NamedTuple):
-    """First and last year of each line's whole run and of its halves, [line]; None where none."""
-
-    whole: tuple[tuple[str, str] | None, ...]
-    earlier: tuple[tuple[str, str] | None, ...]
-    later: tuple[tuple[str, str] | None, ...]
+Span = tuple[str, str] | None  # first and last year; None where there is none
 
 
-def _spans(ends: tuple[tuple[str, str] | None, ...], middle: tuple[str, ...]) -> _Spans:
+def _spans(ends: tuple[Span, ...], middle: tuple[str, ...]) -> tuple[tuple[Span, ...], ...]:
+    """Of each line's whole run, of its earlier and of its later half: [3][line]."""
     pairs = list(zip(ends, middle, strict=True))
-    return _Spans(
+    return (
         ends,
         tuple((end[0], turn) if end and turn else None for end, turn in pairs),
         tuple((turn, end[1]) if end and turn else None for end, turn in pairs),
@@ -214,30 +233,35 @@ def _spans(ends: tuple[tuple[str, str] | None, ...], middle: tuple[str, ...]) ->
 def _changes(
     collection: str,
     lines: tuple[tuple[str, str], ...],
-    ends: tuple[tuple[str, str] | None, ...],
+    spans: tuple[tuple[Span, ...], ...],
     loaded: dict[PopulationYear, Loaded],
     indicator: Indicator,
     settings: Settings,
 ) -> Estimate:
-    """The last year of a span less the first, [line], each pair on the grid it shares."""
-    gap = np.full(len(lines), np.nan)
-    out = Estimate(gap, gap.copy(), gap.copy(), np.full(len(lines), Reason.NOT_AVAILABLE, np.uint8))
-    for index, (line, pair) in enumerate(zip(lines, ends, strict=True)):
-        if pair is None:
-            continue
-        first, last = (PopulationYear(*line, period) for period in pair)
-        this, that = loaded[last].panel, loaded[first].panel
-        grid = this.grid.common(that.grid)
-        part = indicators.difference(
-            indicator,
-            this.regroup(grid),
-            that.regroup(grid),
-            settings,
-            streams=(stream(collection, last), stream(collection, first)),
+    """The last year of each span less the first, [span, line], each pair on the grid it shares."""
+    asked = [(line, span) for row in spans for line, span in zip(lines, row, strict=True)]
+
+    def read(grid: AgeGrid, places: list[int]) -> Estimate:
+        chosen = [(line, span) for line, span in (asked[at] for at in places) if span]
+        last, first = (
+            [PopulationYear(*line, span[end]) for line, span in chosen] for end in (1, 0)
         )
-        out.value[index], out.low[index], out.high[index] = part.value, part.low, part.high
-        out.reason[index] = part.reason
-    return out
+        return indicators.difference(
+            indicator,
+            _stacked(last, loaded, grid),
+            _stacked(first, loaded, grid),
+            settings,
+            streams=(_codes(collection, last), _codes(collection, first)),
+        )
+
+    def shared_grid(line: tuple[str, str], span: Span) -> AgeGrid | None:
+        if span is None:
+            return None
+        first, last = (loaded[PopulationYear(*line, period)].panel.grid for period in span)
+        return first.common(last)
+
+    found = _scattered([shared_grid(*one) for one in asked], read)
+    return found[np.arange(len(asked)).reshape(len(spans), len(lines))]
 
 
 def _rows(flat: list[T], width: int) -> tuple[tuple[T, ...], ...]:

@@ -29,9 +29,9 @@ def test_the_smooth_peak_of_a_law_is_its_mode(slope: float) -> None:
     level = 0.1 / np.exp(82 * slope)
     single = gompertz_panel(GRIDS["single"], slope=slope, level=level, accidents=0)
     got = MODE.value(run(single, SETTINGS_1))
-    assert got == pytest.approx(law(level, slope), abs=0.002)
+    assert got == pytest.approx(law(level, slope), abs=0.005)
     coarse = gompertz_panel(GRIDS["abridged"], slope=slope, level=level, accidents=0)
-    assert MODE.value(run(coarse, SETTINGS_1)) == pytest.approx(law(level, slope), abs=0.002)
+    assert MODE.value(run(coarse, SETTINGS_1)) == pytest.approx(law(level, slope), abs=0.005)
 
 
 def test_the_peak_is_where_the_curve_of_deaths_is_highest() -> None:
@@ -42,7 +42,7 @@ def test_the_peak_is_where_the_curve_of_deaths_is_highest() -> None:
     fine = np.linspace(10, 100, 900_001)
     mu = np.exp(curve.log_rates(fine))
     reach = np.exp(-np.append(0, np.cumsum((mu[1:] + mu[:-1]) / 2 * 1e-4)))
-    assert _peak(curve) == pytest.approx(fine[np.argmax(mu * reach)], abs=0.002)
+    assert _peak(curve) == pytest.approx(fine[np.argmax(mu * reach)], abs=0.005)
     assert MODE.value(run(panel, SETTINGS_1)) == _peak(curve)
 
 

@@ -9,19 +9,37 @@ from numpy.testing import assert_allclose, assert_array_equal
 
 from engine.ages import AgeGrid
 from engine.estimates import Reason
+from engine.panel import Panel
 from server.results.comparison import Comparison, comparison
 from server.results.loading import NotInEdition
 from server.results.questions import ComparisonQuestion, PopulationYear
 from server.store.connect import Session
 from server.store.heading import heading
-from tests.factories import GRIDS, edition, gompertz_panel
+from server.store.records import Area
+from tests.factories import (
+    GRIDS,
+    cells,
+    edition,
+    gompertz_panel,
+    stored_collection,
+    stored_edition,
+)
 
 FIVE = GRIDS["abridged"]
 SHORT = AgeGrid(FIVE.starts[: FIVE.position(85) + 1])
 
 
-def asked(session: Session, this: str, that: str, *, number: int = 1, of: str = "e0") -> Comparison:
-    question = ComparisonQuestion(PopulationYear.parse(this), PopulationYear.parse(that), of)
+def asked(
+    session: Session,
+    this: str,
+    that: str,
+    *,
+    number: int = 1,
+    of: str = "e0",
+    settings: str = "almanac-1",
+) -> Comparison:
+    sides = PopulationYear.parse(this), PopulationYear.parse(that)
+    question = ComparisonQuestion(*sides, of, settings=settings)
     return comparison(session, heading(session, "isle", number), question)
 
 
@@ -87,6 +105,60 @@ def test_deaths_counted_in_both_are_counted_once(isle: Session) -> None:
     assert_allclose(width, half, rtol=0.1)
 
 
+def test_what_both_count_is_brought_to_the_same_ages(session: Session) -> None:
+    """Women of the north, counted in coarser groups than either side, are part of both."""
+    women, men = (gompertz_panel(sex=sex, people=3e6, seed=1) for sex in "fm")
+    panels = {
+        "north.f.2014": women.regroup(SHORT),
+        "north.p.2014": Panel.persons(women, men),
+        "isle.f.2014": gompertz_panel(sex="f", people=9e6, seed=2),
+    }
+    edition(session, panels, parents={"north": "isle"}, delivered=("isle",))
+    found = asked(session, "isle.f.2014", "north.p.2014")
+    assert found.overlap == PopulationYear("north", "f", "2014")
+    assert found.grid == SHORT
+    assert len(found.regrouped) == 2
+    assert found.difference["e0"].reason == Reason.NONE
+
+
+def test_what_both_count_may_not_be_held(session: Session) -> None:
+    """Then the two are taken as apart, which makes the interval too wide, and nothing is said."""
+    panels = {
+        "north.p.2014": gompertz_panel(sex="p", people=3e6, seed=1),
+        "isle.f.2014": gompertz_panel(sex="f", people=9e6, seed=2),
+    }
+    edition(session, panels, parents={"north": "isle"}, delivered=("isle",))
+    found = asked(session, "isle.f.2014", "north.p.2014")
+    assert found.overlap is None
+    widths = [side.estimates["e0"] for side in (found.this, found.that)]
+    halves = [float(one.high - one.low) / 2 for one in widths]
+    difference = found.difference["e0"]
+    assert_allclose((difference.high - difference.low) / 2, np.hypot(*halves), rtol=1e-12)
+
+
+def test_an_area_that_is_its_whole_differs_by_nothing(session: Session) -> None:
+    panels = {f"north.{sex}.2014": gompertz_panel(sex=sex, people=3e6) for sex in "fm"}
+    edition(session, panels, parents={"north": "isle"})
+    found = asked(session, "north.f.2014", "isle.f.2014")
+    for key, difference in found.difference.items():
+        assert difference.value == 0, key
+        assert difference.reason == Reason.NO_SAMPLING_INTERVAL, key
+
+
+def test_contributions_through_a_law_stand_on_the_grid_of_the_counts(isle: Session) -> None:
+    found = asked(isle, "north.f.2014", "north.f.2004", settings="almanac-1-kannisto")
+    assert len(found.this.table.grid) > len(found.grid)
+    assert found.arriaga.shape == found.contributions["e0"].by_age.shape == (len(found.grid),)
+    assert_allclose(found.arriaga.sum(), found.difference["e0"].value, rtol=1e-10)
+
+
+def test_deaths_without_person_years_are_refused(session: Session) -> None:
+    stored_collection(session, "isle")
+    stored_edition(session, cells(years=(2014,), measures=("deaths",)), collection="isle")
+    with pytest.raises(NotInEdition, match=r"does not hold a\.f\.2014, or not both its deaths and"):
+        asked(session, "a.f.2014", "a.m.2014")
+
+
 def test_the_same_on_both_sides_differs_by_nothing_and_chance_has_no_part(isle: Session) -> None:
     found = asked(isle, "north.f.2014", "north.f.2014")
     assert found.same
@@ -111,6 +183,19 @@ def test_a_newer_edition_moves_the_headline_by_what_it_says(isle: Session) -> No
     assert_allclose(before.moved.value, after.difference["e0"].value, rtol=1e-13)
     assert before.moved.value < before.difference["e0"].value
     assert after.moved is None
+
+
+def test_a_newer_edition_may_lack_a_side(isle: Session) -> None:
+    stored_edition(
+        isle,
+        cells(("north",), years=(2014,)),
+        collection="isle",
+        areas=(Area("north", "North"),),
+        replace=True,
+    )
+    found = asked(isle, "north.f.2014", "north.f.2004")
+    assert found.moved is not None
+    assert np.isnan(found.moved.value)
 
 
 def test_what_the_edition_lacks_is_refused(isle: Session) -> None:

@@ -125,7 +125,6 @@ def test_no_more_deaths_are_shared_than_either_counts(isle: Session) -> None:
     whole, part = of("isle.f.2014"), of("north.f.2014")
     loaded = load(isle, "isle", 1, [whole, part])
     inner, outer = loaded[part].panel.regroup(SHORT), loaded[whole].panel
-    assert_array_equal(shared_deaths(loaded[part], outer, inner), inner.deaths)
+    assert_array_equal(shared_deaths(loaded[part].panel, outer, inner), inner.deaths)
     fewer = gompertz_panel(people=1_000).regroup(SHORT)
-    assert_array_equal(shared_deaths(loaded[part], fewer, inner), fewer.deaths)
-    assert shared_deaths(None, outer, inner) is None
+    assert_array_equal(shared_deaths(loaded[part].panel, fewer, inner), fewer.deaths)

@@ -66,7 +66,16 @@ def test_a_population_year_is_read_from_the_right(one: PopulationYear) -> None:
 
 
 @pytest.mark.parametrize(
-    "text", ["north", "north.f", "north.x.2014", "north.f.14", "no/rth.f.2014", ".f.2014"]
+    "text",
+    [
+        "north",
+        "north.f",
+        "north.x.2014",
+        "north.f.14",
+        "no/rth.f.2014",
+        ".f.2014",
+        "north.f.２０１４",
+    ],
 )
 def test_what_is_no_population_year_is_refused(text: str) -> None:
     with pytest.raises(BadValue, match=r"is not an area, sex and year.*north\.f\.2014"):

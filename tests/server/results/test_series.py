@@ -5,15 +5,16 @@ from contextlib import AbstractContextManager
 
 import numpy as np
 import pytest
-from numpy.testing import assert_allclose
+from numpy.testing import assert_allclose, assert_array_equal
 
 from engine import indicators
 from engine.ages import AgeGrid
 from engine.estimates import Reason
 from engine.settings import find
 from server.results import series as module
-from server.results.loading import NotInEdition
-from server.results.questions import TrendQuestion
+from server.results.estimating import stream
+from server.results.loading import NotInEdition, load
+from server.results.questions import PopulationYear, TrendQuestion
 from server.results.series import Series, TooLarge, series
 from server.store.connect import Session
 from server.store.heading import heading
@@ -74,6 +75,60 @@ def test_the_change_is_the_last_year_known_less_the_first(isle: Session) -> None
     one = asked(isle, last="2001")
     assert one.ends == (None,)
     assert np.isnan(one.change.value[0])
+
+
+@pytest.mark.parametrize("of", ["e0", "median"])
+def test_changes_of_many_lines_are_those_of_each_pair_of_years(isle: Session, of: str) -> None:
+    found = asked(isle, of=of, areas=("cape", "north"), sexes=("f", "m"))
+    assert found.middle == ("2003", "2003", "2003", "")  # men of the north have but four years
+    held = load(isle, "isle", 1, [PopulationYear(*line, y) for line in found.lines for y in YEARS])
+    assert_array_equal(found.later.reason == Reason.NOT_AVAILABLE, [False, False, False, True])
+    for change, row, first, last in (
+        (found.change, 2, "2001", "2005"),
+        (found.earlier, 1, "2001", "2003"),
+        (found.later, 0, "2003", "2005"),
+    ):
+        this, that = (PopulationYear(*found.lines[row], year) for year in (last, first))
+        panels = [held[one].panel for one in (this, that)]
+        grid = panels[0].grid.common(panels[1].grid)
+        alone = indicators.difference(
+            indicators.find(of),
+            *(panel.regroup(grid) for panel in panels),
+            find("almanac-1"),
+            streams=(stream("isle", this), stream("isle", that)),
+        )
+        for part in ("value", "low", "high", "reason"):
+            assert_array_equal(getattr(change, part)[row], getattr(alone, part), err_msg=part)
+
+
+def test_the_middle_is_that_of_the_years_not_of_their_number(session: Session) -> None:
+    years = ("1950", "1990", "1998", "1999", "2000")
+    edition(session, {f"north.f.{year}": gompertz_panel(people=3e6) for year in years})
+    assert asked(session, first="1950", last="2000").middle == ("1990",)
+
+
+@pytest.mark.parametrize(("first", "last"), [("2001", "2004"), ("2004", "2004"), ("2001", "2001")])
+def test_a_newer_edition_is_measured_by_the_newest_figure(
+    isle: Session, first: str, last: str
+) -> None:
+    """Also where there is one year only, and no change."""
+    changed = gompertz_panel(sex="f", people=3e6, seed=70)
+    edition(isle, {f"north.f.{year}": changed for year in ("2001", "2004")})
+    found = asked(isle, first=first, last=last)
+    assert found.headline == PopulationYear("north", "f", last)
+    assert found.moved is not None
+    again = series(isle, heading(isle, "isle", 2), found.question)
+    assert again.moved is None
+    assert_allclose(found.moved.value, again.estimate.value[0, -1], rtol=1e-13)
+    assert found.moved.value != found.estimate.value[0, -1]
+
+
+def test_where_no_year_has_a_figure_the_last_one_asked_for_is_its_headline(isle: Session) -> None:
+    edition(isle, {"north.f.2001": gompertz_panel(people=3e6, seed=70)})
+    found = asked(isle, of="e3")
+    assert found.headline == PopulationYear("north", "f", "2005")
+    assert found.moved is not None
+    assert np.isnan(found.moved.value)
 
 
 def test_a_simulated_indicator_does_not_depend_on_what_else_is_asked(isle: Session) -> None:
