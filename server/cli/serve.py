@@ -50,6 +50,7 @@ def serve(config: Config) -> int:
         port=config.port,
         log_level="warning",
         server_header=False,
+        proxy_headers=False,  # who asks is who is connected
         timeout_graceful_shutdown=10,
     )
     return 0

@@ -5,10 +5,10 @@ Pure ASGI. Until there are accounts only this computer is answered, under its ow
 
 import ipaddress
 import logging
+import re
 import secrets
 import time
 from collections.abc import Callable
-from urllib.parse import urlsplit
 
 from fastapi import Request, Response
 from starlette.datastructures import Headers, MutableHeaders
@@ -41,7 +41,9 @@ FIXED = {
     "Permissions-Policy": "camera=(), geolocation=(), microphone=()",
 }
 SAFE = frozenset(("GET", "HEAD", "OPTIONS"))
-OWN_NAMES = frozenset(("localhost", "127.0.0.1", "[::1]"))
+OWN_NAME = re.compile(r"(localhost|127\.0\.0\.1|\[::1\])(:[0-9]{1,5})?", re.IGNORECASE)
+PASSED_ON = ("forwarded", "x-forwarded-for", "x-forwarded-host", "x-real-ip")  # said by proxies
+LONGEST = 2_000  # characters of a path; no page's has a tenth of them
 DRAINED = 8  # times the limit: an answer reaches a browser only once it has sent what it wanted to
 
 log = logging.getLogger("ebbline")
@@ -77,7 +79,7 @@ class Guard:
                 await body.drain()
                 response = self.refuse(request, refusal)
             else:
-                log.exception("request %s to %s failed", answer.request_id, scope["path"])
+                log.exception("request %s to %r failed", answer.request_id, scope["path"])
                 if answer.begun:
                     raise
                 response = self.failed(request)
@@ -151,14 +153,15 @@ class _Body:
 
 def _judge(scope: Scope) -> None:
     headers = Headers(scope=scope)
-    if not _is_this_computer(scope.get("client")):
+    passed_on = any(name in headers for name in PASSED_ON)  # from whom is not known
+    if passed_on or not _is_this_computer(scope.get("client")):
         raise Refusal(
             403,
             "Not answered",
             "Ebbline answers only the computer it runs on until it has accounts.",
         )
     host = headers.get("host", "")
-    if _without_port(host) not in OWN_NAMES:
+    if not OWN_NAME.fullmatch(host):
         raise Refusal(
             403,
             "Not answered",
@@ -166,6 +169,8 @@ def _judge(scope: Scope) -> None:
             "[::1] only.",
             host=host,
         )
+    if len(scope["path"]) > LONGEST:
+        raise Refusal(414, "Too long", "This address is longer than that of any page. Shorten it.")
     if scope["method"] not in SAFE and not _same_origin(headers):
         raise Refusal(
             403,
@@ -183,15 +188,11 @@ def _is_this_computer(client: tuple[str, int] | None) -> bool:
     return (mapped or address).is_loopback
 
 
-def _without_port(host: str) -> str:
-    return host.lower() if host.endswith("]") else host.lower().rpartition(":")[0] or host.lower()
-
-
 def _same_origin(headers: Headers) -> bool:
     site = headers.get("sec-fetch-site")
     if site is not None:
         return site in ("same-origin", "none")
     origin = headers.get("origin")
     if origin is not None:
-        return urlsplit(origin).netloc == headers.get("host")
+        return origin in (f"{scheme}://{headers['host']}" for scheme in ("http", "https"))
     return "cookie" not in headers  # no browser: no one's rights ride along

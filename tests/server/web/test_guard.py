@@ -33,6 +33,7 @@ def test_every_answer_has_the_fixed_headers(reader: TestClient, path: str) -> No
         ("not an address", "localhost", 403),
         ("127.0.0.1", "almanac.example", 403),
         ("127.0.0.1", "localhost.example:80", 403),
+        ("fe80::1", "[::1]", 403),
     ],
 )
 def test_only_this_computer_is_answered_under_its_own_names(
@@ -47,6 +48,22 @@ def test_only_this_computer_is_answered_under_its_own_names(
 
 
 @pytest.mark.parametrize(
+    ("host", "status"),
+    [
+        ("LOCALHOST:8000", 200),
+        ("localhost:80@almanac.example", 403),
+        ("localhost:80/almanac", 403),
+        ("localhost:", 403),
+        ("localhost.", 403),
+        ("127.0.0.1.example", 403),
+        ("", 403),
+    ],
+)
+def test_a_name_is_read_whole(reader: TestClient, host: str, status: int) -> None:
+    assert reader.get("/small", headers={"Host": host}).status_code == status
+
+
+@pytest.mark.parametrize(
     ("headers", "status"),
     [
         ({"Sec-Fetch-Site": "same-origin"}, 200),
@@ -56,6 +73,9 @@ def test_only_this_computer_is_answered_under_its_own_names(
         ({"Origin": "http://127.0.0.1:8000"}, 200),
         ({"Origin": "http://127.0.0.1:9000"}, 403),
         ({"Origin": "null"}, 403),
+        ({"Origin": "http://["}, 403),
+        ({"Origin": "//127.0.0.1:8000"}, 403),
+        ({"Origin": "http://x@127.0.0.1:8000"}, 403),
         ({"Cookie": "a=b"}, 403),
         ({}, 200),
     ],
@@ -64,6 +84,28 @@ def test_a_form_of_another_site_is_refused(
     reader: TestClient, headers: dict[str, str], status: int
 ) -> None:
     assert reader.post("/done", headers=headers).status_code == status
+
+
+@pytest.mark.parametrize(
+    ("name", "value"),
+    [
+        ("X-Forwarded-For", "127.0.0.1"),
+        ("Forwarded", "for=192.0.2.7"),
+        ("X-Real-IP", "192.0.2.7"),
+        ("X-Forwarded-Host", "almanac.example"),
+    ],
+)
+def test_what_a_proxy_passes_on_is_not_answered(reader: TestClient, name: str, value: str) -> None:
+    answer = reader.get("/small", headers={name: value})
+    assert answer.status_code == 403
+    assert "Ebbline answers only the computer it runs on" in answer.text
+
+
+@pytest.mark.parametrize("path", ["/counted/" + "9" * 5_000, "/c/isle/" + "9" * 5_000 + "/trend"])
+def test_an_address_without_end_gets_a_sentence(reader: TestClient, path: str) -> None:
+    answer = reader.get(path)
+    assert answer.status_code == 414
+    assert "This address is longer than that of any page." in answer.text
 
 
 @pytest.fixture
