@@ -152,12 +152,7 @@ def answer(request: Request, asked: Asked[Asks], build: Callable[[], Page]) -> R
     return respond(
         request,
         build,
-        tag_parts=state(asked.heading),
+        tag_parts=(asked.heading,),  # all that can change it, beside its address and the build
         form=asked.twin or "html",
         table=asked.table,
     )
-
-
-def state(heading: Heading) -> tuple[object, ...]:
-    """All that can change a page pinned to an edition, beside its address and the build."""
-    return (heading.edition.digest, heading.collection.revision)

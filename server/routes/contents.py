@@ -29,7 +29,7 @@ def show_collections(request: Request, session: SessionDep, twin: str = "") -> R
     return respond(
         request,
         lambda: collections_page.build(session),
-        tag_parts=[(one.code, one.revision) for one in known],
+        tag_parts=known,
         form=form(twin),
         table=given.get("table", ""),
     )
@@ -45,7 +45,7 @@ def show_editions(
     return respond(
         request,
         lambda: editions_page.build(session, known.code),
-        tag_parts=(known.revision,),
+        tag_parts=(known,),
         form=form(twin),
         table=given.get("table", ""),
     )

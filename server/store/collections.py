@@ -58,6 +58,6 @@ def touch(session: Session, collection_id: int) -> None:
     )
 
 
-def _columns() -> Select[int, str, str, str, int]:
+def _columns() -> Select[int, str, str, str, int, dt.datetime]:
     row = tables.Collection
-    return select(row.id, row.code, row.name, row.owner, row.revision)
+    return select(row.id, row.code, row.name, row.owner, row.revision, row.made)

@@ -19,6 +19,7 @@ _STATEMENT = (
         Collection.name,
         Collection.owner,
         Collection.revision,
+        Collection.made.label("opened"),
         editions.standing_number(Collection.id).label("newest"),
         *editions.COLUMNS,
     )
@@ -53,7 +54,9 @@ def heading(session: Session, collection_code: str, number: int) -> Heading:
         raise Missing("edition", number, known)
     row = rows[0]
     return Heading(
-        CollectionRecord(row.collection_id, row.code, row.name, row.owner, row.revision),
+        CollectionRecord(
+            row.collection_id, row.code, row.name, row.owner, row.revision, row.opened
+        ),
         editions.of_rows(rows)[0],
         row.newest,
     )

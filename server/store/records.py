@@ -88,6 +88,7 @@ class Collection:
     name: str
     owner: str  # the office that answers for the data
     revision: int  # counts every change of standing, policy, names and notes
+    made: dt.datetime  # UTC; tells it from one of the same code in another database
 
 
 @dataclass(frozen=True, slots=True)

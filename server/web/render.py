@@ -70,7 +70,7 @@ def respond(
     """The page at this address, or its twin in another `form` (csv of one `table`).
 
     `tag_parts` are all that can change the page beside its address and the build: for a page of an
-    edition its digest and the collection's revision. A repeat does not call `build`. A csv that
+    edition the records of both it and its collection. A repeat does not call `build`. A csv that
     names no table is redirected to the page's first.
     """
     web = of(request)

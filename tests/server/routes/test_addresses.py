@@ -1,10 +1,29 @@
-"""Odd spellings of an address: each leads to the pinned one at once, or is refused in words."""
+"""Odd spellings of an address lead to the pinned one at once, or are refused in words; tags tell
+what stands at one address from what stood there before."""
+
+import datetime as dt
+import shutil
+from pathlib import Path
 
 import pytest
 from starlette.testclient import TestClient
 
+from server.app import create_app
+from server.config import Config
+from server.store import collections
+from server.store.connect import make_engine, sessions, transaction
+from tests.factories import NOON, edition, gompertz_panel
+from tests.server.web.site import browser
+
+LATER = NOON + dt.timedelta(microseconds=1)
 REST = "&figures=released&settings=almanac-1"
 TREND = "/c/isle/1/trend.csv?of=e0&area=north&sex=f&sex=m&from=2012&to=2014" + REST
+PLACES = (
+    "/collections",
+    "/c/isle/editions.json",
+    "/c/isle/1/contents?figures=released&settings=almanac-1",
+    "/c/isle/1/population-year.json?of=north.f.2014" + REST,
+)
 
 
 @pytest.mark.parametrize(
@@ -33,3 +52,22 @@ def test_digits_are_those_of_addresses(reader: TestClient, address: str, key: st
     answer = reader.get(address)
     assert answer.status_code == 400
     assert key in answer.text
+
+
+def test_another_database_with_the_same_counts_is_not_taken_for_this_one(
+    sqlite_template: Path, tmp_path: Path
+) -> None:
+    """A browser may hold pages of a database that stood at the same host and port before."""
+    tags = []
+    for name, opened in (("Isle", NOON), ("Isle, all deaths", NOON), ("Isle", LATER)):
+        url = f"sqlite:///{shutil.copy(sqlite_template, tmp_path / f'{len(tags)}.db')}"
+        engine = make_engine(url)
+        with sessions(engine)() as session:
+            with transaction(session):
+                collections.create(session, code="isle", name=name, owner="Desk", at=opened)
+            edition(session, {"north.f.2014": gompertz_panel()})
+        engine.dispose()
+        with browser(create_app(Config(database_url=url))) as reader:
+            tags.append([reader.head(place).headers["etag"] for place in PLACES])
+    for of_one_place in zip(*tags, strict=True):
+        assert len(set(of_one_place)) == 3
