@@ -43,6 +43,7 @@ ERRORS: tuple[tuple[type[Exception], int, str], ...] = (
     (errors.Missing, 404, "No such page"),
     (NotInEdition, 404, "No such page"),
     (NoSuchPage, 404, "No such page"),
+    (errors.Unreachable, 503, "Not reachable"),
     (errors.Refused, 409, "Not done"),
     (TooLarge, 422, "Too large a question"),
 )

@@ -3,6 +3,7 @@
 import argparse
 import sys
 from collections.abc import Sequence
+from contextlib import ExitStack
 from dataclasses import replace
 from pathlib import Path
 
@@ -34,12 +35,13 @@ def parser() -> argparse.ArgumentParser:
 
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run one command; 0 where it did what was asked, else a sentence and another number."""
-    try:
-        config = Config.from_environment()
-    except ValueError as error:
-        print(f"ebbline: {error}", file=sys.stderr)
-        return 2
-    with speaking(config.language):
+    with ExitStack() as language:
+        try:
+            config = Config.from_environment()
+            language.enter_context(speaking(config.language))
+        except ValueError as error:
+            print(f"ebbline: {error}", file=sys.stderr)
+            return 2
         asked = parser().parse_args(arguments)
         try:
             return int(asked.run(asked, _with_options(config, asked)))

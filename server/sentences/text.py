@@ -21,7 +21,10 @@ def language() -> str:
 def speaking(code: str) -> Iterator[None]:
     """Texts inside are in this language; ValueError lists those there are."""
     if code not in LANGUAGES:
-        raise ValueError(f"no language {code!r}; there are {', '.join(LANGUAGES)}")
+        raise ValueError(
+            f"EBBLINE_LANGUAGE is {code!r}, a language there is no catalogue of; there are "
+            f"{', '.join(LANGUAGES)}"
+        )
     token = _LANGUAGE.set(code)
     try:
         yield

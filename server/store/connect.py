@@ -5,19 +5,34 @@ from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
 
-from sqlalchemy import Connection, Engine, NullPool, create_engine, event, make_url
+from sqlalchemy import URL, Connection, Engine, NullPool, create_engine, event, make_url
+from sqlalchemy.exc import ArgumentError
 from sqlalchemy.orm import Session, sessionmaker
+
+from server.store.errors import Unreachable
 
 __all__ = ["Engine", "Session", "make_engine", "sessions", "transaction"]
 
 
 def make_engine(url: str, *, migrating: bool = False) -> Engine:
     """An engine for SQLite or PostgreSQL. `migrating` keeps no connection for later, and leaves
-    SQLite's foreign keys unenforced, since changing a table there means making it anew."""
-    pool = NullPool if migrating else None
+    SQLite's foreign keys unenforced, since changing a table there means making it anew.
+
+    Raises: Unreachable where the address cannot be read, or its folder or driver is not to be had.
+    """
     if url.startswith("postgresql:"):
         url = url.replace("postgresql:", "postgresql+psycopg:", 1)
-    address = make_url(url)
+    try:
+        address = make_url(url)
+    except ArgumentError as error:  # the address may hold a password: it is not shown
+        raise Unreachable("EBBLINE_DATABASE_URL", "it is no address of a database") from error
+    try:
+        return _engine(address, NullPool if migrating else None, migrating=migrating)
+    except (OSError, ArgumentError, ModuleNotFoundError) as error:
+        raise Unreachable(str(address), error) from error
+
+
+def _engine(address: URL, pool: type[NullPool] | None, *, migrating: bool) -> Engine:
     if address.get_backend_name() != "sqlite":
         return create_engine(address, poolclass=pool, pool_pre_ping=True)
     if address.database:

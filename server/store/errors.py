@@ -44,6 +44,18 @@ class Stale(Refused):
         )
 
 
+class Unreachable(Refused):
+    """There is no database to be had at this address."""
+
+    def __init__(self, place: str, why: object) -> None:
+        super().__init__(
+            "The database at {place} cannot be opened: {why}. Check EBBLINE_DATA and "
+            "EBBLINE_DATABASE_URL.",
+            place=place,
+            why=str(why).partition("\n")[0].rstrip("."),
+        )
+
+
 class Taken(Refused):
     """The code is in use."""
 

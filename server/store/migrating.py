@@ -7,8 +7,10 @@ from alembic.config import Config
 from alembic.runtime.migration import MigrationContext
 from alembic.script import ScriptDirectory
 from sqlalchemy import Engine
+from sqlalchemy.exc import DBAPIError
 
 from server.paths import folder
+from server.store.errors import Unreachable
 
 
 def migrate(url: str) -> None:
@@ -17,9 +19,15 @@ def migrate(url: str) -> None:
 
 
 def schema_state(engine: Engine) -> Literal["head", "behind", "empty"]:
-    """Where the schema stands. One from a newer program counts as 'behind': it is not served."""
-    with engine.connect() as connection:
-        at = MigrationContext.configure(connection).get_current_revision()
+    """Where the schema stands. One from a newer program counts as 'behind': it is not served.
+
+    Raises: Unreachable where there is no database at the address, or no answer from it.
+    """
+    try:
+        with engine.connect() as connection:
+            at = MigrationContext.configure(connection).get_current_revision()
+    except DBAPIError as error:
+        raise Unreachable(str(engine.url), error.orig) from error
     if at is None:
         return "empty"
     head = ScriptDirectory.from_config(configuration("")).get_current_head()
