@@ -62,14 +62,14 @@ def require_port(config: Config) -> None:
         trial.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
         try:
             trial.bind((config.host, config.port))
-        except OSError as error:
+        except (OSError, OverflowError) as error:  # ports end at 65535
             raise Declined(
                 _(
                     "Port {port} on {host} cannot be had: another program holds it, or it is not "
                     "allowed. Stop that program, or choose another port: --port {other}",
                     port=config.port,
                     host=config.host,
-                    other=config.port + 1,
+                    other=config.port + 1 if 0 < config.port < 65_535 else 8010,
                 ),
                 exit_code=1,
             ) from error

@@ -102,7 +102,9 @@ def _frame(found: Comparison) -> Frame:
     return frames.pinned(
         heading,
         question,
-        title=_("{this} against {that}", this=both.this.whole, that=both.that.whole),
+        title=names.first_capital(
+            _("{this} against {that}", this=both.this.whole, that=both.that.whole)
+        ),
         place=phrase(
             _("{this} against {that}; {exchange}"),
             this=_linked(found, question.this, both.this.whole),

@@ -50,6 +50,16 @@ def test_a_taken_port_is_said_in_a_sentence(
     assert "quillmere" not in capsys.readouterr().out  # nothing was loaded
 
 
+@pytest.mark.parametrize("port", ["65536", "-1"])
+def test_a_port_that_cannot_be_is_said_in_a_sentence(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], port: str
+) -> None:
+    assert main(["demo", "--data", str(tmp_path), "--port", port]) == 1
+    said = capsys.readouterr().err
+    assert f"Port {port} on 127.0.0.1 cannot be had" in said
+    assert "choose another port: --port 8010" in said
+
+
 def test_a_second_demo_keeps_what_is_there(
     tmp_path: Path, capsys: pytest.CaptureFixture[str]
 ) -> None:
