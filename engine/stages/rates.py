@@ -15,15 +15,22 @@ class Rates:
     mx: Array  # joined groups carry the rate of the whole join
     deaths: Array
     exposure: Array
-    joined: NDArray[np.bool_]  # the group shares its rate with a neighbour
+    empty: NDArray[np.bool_]  # takes the rate of the join with the group below
+
+    @property
+    def joined(self) -> NDArray[np.bool_]:
+        """Whether a group shares its rate with a neighbour, [..., age]."""
+        shares = self.empty.copy()
+        shares[..., :-1] |= self.empty[..., 1:]
+        return shares & ~np.isnan(self.mx)
 
     def pull(self, g: Array) -> Array:
         """Gradient in the raw rates from the gradient in the joined ones: a join's parts add up in
         its lowest group, which owns the person-years."""
-        empty, g = self.exposure == 0, g.copy()
+        g = g.copy()
         for x in reversed(range(1, g.shape[-1])):
-            g[..., x - 1] += np.where(empty[..., x], g[..., x], 0.0)
-            g[..., x] = np.where(empty[..., x], 0.0, g[..., x])
+            g[..., x - 1] += np.where(self.empty[..., x], g[..., x], 0.0)
+            g[..., x] = np.where(self.empty[..., x], 0.0, g[..., x])
         return g
 
     def per_death(self, g: Array) -> Array:
@@ -32,8 +39,7 @@ class Rates:
         with np.errstate(divide="ignore", invalid="ignore"):
             moved = g / self.exposure
         for x in range(1, moved.shape[-1]):
-            empty = self.exposure[..., x] == 0
-            moved[..., x] = np.where(empty, moved[..., x - 1], moved[..., x])
+            moved[..., x] = np.where(self.empty[..., x], moved[..., x - 1], moved[..., x])
         return moved
 
 
@@ -55,12 +61,9 @@ def death_rates(deaths: Array, exposure: Array) -> Rates:
         mx = np.where(empty, np.nan, pooled / exposure)
     for x in range(1, mx.shape[-1]):
         mx[..., x] = np.where(empty[..., x], mx[..., x - 1], mx[..., x])
-    joined = empty.copy()
-    joined[..., :-1] |= empty[..., 1:]
-    return Rates(mx, deaths, exposure, joined & ~np.isnan(mx))
+    return Rates(mx, deaths, exposure, empty)
 
 
 def given_rates(mx: Array, exposure: Array) -> Rates:
     """Rates given outright, each group for itself; the deaths are those the exposure implies."""
-    joined = np.zeros(np.broadcast_shapes(mx.shape, exposure.shape), dtype=bool)
-    return Rates(mx, mx * exposure, exposure, joined)
+    return Rates(mx, mx * exposure, exposure, np.zeros(mx.shape, dtype=bool))

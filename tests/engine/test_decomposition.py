@@ -140,6 +140,20 @@ def test_nothing_remains_between_very_unlike_populations(grid: AgeGrid) -> None:
 
 
 @pytest.mark.fast
+@pytest.mark.parametrize("empty", [(0, 1), (1, 0), (1, 1)])
+def test_each_age_of_a_join_has_its_own_part(empty: tuple[int, int]) -> None:
+    """Nobody counted at 95-99 on one side or on both: its deaths share the rate of 90-94, and its
+    part is still its own."""
+    this, that = gompertz_panel(GRID, seed=1), gompertz_panel(GRID, seed=2, level=3e-5)
+    for panel, is_empty in zip((this, that), empty, strict=True):
+        panel.exposure[-2] *= 1 - is_empty
+    found = contributions(INDICATORS["e0"], this, that, PLAIN)
+    (expected,) = step_sums(Pair(this, that), PLAIN, AT_ONCE, INDICATORS["e0"])
+    np.testing.assert_allclose(found.by_age, expected, rtol=0, atol=1e-6)
+    assert abs(found.by_age[-2]) > 1e-4
+
+
+@pytest.mark.fast
 def test_between_the_sexes_the_first_year_rules_remain() -> None:
     """Women and men with the same rates still differ by their rules; no age's rate does that."""
     women, men = gompertz_panel(sex="f"), gompertz_panel(sex="m")
