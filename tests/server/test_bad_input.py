@@ -442,10 +442,20 @@ def test_an_edition_that_is_not_there(reader: TestClient, view: str) -> None:
 @pytest.mark.parametrize(
     ("view", "old", "new", "sentence"),
     [
-        ("population-year", "2001", "1950", "This edition does not hold north.f.1950."),
+        (
+            "population-year",
+            "2001",
+            "1950",
+            "This edition does not hold north.f.1950, or not both its deaths and its",
+        ),
         ("population-year", "north", "east", "Its areas are north and south;"),
         ("population-year", "north.f.2001", "north", "“north” is not an area, sex and year."),
-        ("comparison", "north.m.2001", "north.m.1950", "does not hold north.m.1950."),
+        (
+            "comparison",
+            "north.m.2001",
+            "north.m.1950",
+            "does not hold north.m.1950, or not both its deaths",
+        ),
         ("comparison", "of=e0", "of=joy", "The key “of” has the value “joy”; it can be e0, e65,"),
         ("trend", "area=north", "area=east", "This edition has no area east. Its areas are north"),
         (
