@@ -148,7 +148,7 @@ def _whiskers(series: Series, color: str, thickness: float) -> Trace:
 def _hover(series: Series, chart: Chart) -> Trace:
     """The label of a point: the series, then the chart's own template of age or year and value."""
     named = {"customdata": [html.escape(name) for name in series.names]} if series.names else {}
-    who = html.escape(series.name or series.label)
+    who = html.escape(series.name or series.label).replace("%{", "%&#123;")  # no part to fill in
     return {"hovertemplate": f"{who}, {chart.hover}<extra></extra>"} | named
 
 

@@ -67,7 +67,7 @@ def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendP
             ),
             figures=question.figures,
             settings=question.settings,
-            notices=frames.notices(heading, question, found.moved, _headline(found, courses[0])),
+            notices=frames.notices(heading, question, found.moved, _headline(found)),
         ),
         answer=say.answer(courses[0], label, names.population(sex, found.holdings.name(area))),
         lead=tuple(sentence for sentence in lead if sentence),
@@ -110,15 +110,15 @@ def course(found: Series, line: int) -> say.Course | None:
     )
 
 
-def _headline(found: Series, first: say.Course | None) -> Headline | None:
-    """The figure by which a newer edition is measured: the first line's last."""
-    if first is None:
-        return None
+def _headline(found: Series) -> Headline:
+    """The figure by which a newer edition is measured: the first line's newest."""
+    year = found.headline.period
     label = _(
-        "{label} of {who} in {year}", label=_(found.indicator.label), who=first.who, year=first.last
+        "{label} of {who} in {year}", label=_(found.indicator.label), who=_who(found, 0), year=year
     )
+    here = found.estimate.value[0, found.periods.index(year)]
     there = found.moved.value if found.moved else np.nan
-    return Headline(label, found.indicator.unit, float(first.at_last.value), there)
+    return Headline(label, found.indicator.unit, float(here), there)
 
 
 def _cautions(found: Series) -> tuple[Caution, ...]:

@@ -77,23 +77,18 @@ def editions(collection: str, count: int, standing_: int | None) -> Sentence:
     if not count:
         return phrase(_("{collection} has no edition yet."), collection=collection)
     if standing_ is None:
-        return phrase(
-            n_(
-                "{collection} has one edition, and it was withdrawn.",
-                "{collection} has {count} editions, and all of them were withdrawn.",
-                count,
-                collection=collection,
-            )
+        text = (
+            _("{collection} has one edition, and it was withdrawn.")
+            if count == 1
+            else _("{collection} has {count} editions, and all of them were withdrawn.")
         )
-    return phrase(
-        n_(
-            "{collection} has one edition, and it stands.",
-            "{collection} has {count} editions; edition {number} stands.",
-            count,
-            collection=collection,
-            number=standing_,
+    else:
+        text = (
+            _("{collection} has one edition, and it stands.")
+            if count == 1
+            else _("{collection} has {count} editions; edition {number} stands.")
         )
-    )
+    return phrase(text, collection=collection, count=str(count), number=str(standing_))
 
 
 def standing(*, stands: bool, withdrawn: dt.date | None) -> str:

@@ -21,7 +21,8 @@ Sentence = tuple[Piece, ...]
 
 
 def phrase(text: str, /, **parts: "Piece | str") -> Sentence:
-    """A text of the catalogue with its {names} filled in by pieces, in the text's own order.
+    """A text of the catalogue with its {names} filled in by pieces, in the text's own order. What a
+    user wrote is handed over as a part, never inside the text, since it may hold braces.
 
     Raises: KeyError where the text names a part that is not given.
     >>> phrase("See {it}.", it=Piece("edition 2", "/c/x/2/contents"))[1].href

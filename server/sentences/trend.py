@@ -179,14 +179,19 @@ def others(courses: list[Course]) -> Sentence:
 
 def finding(label: str, courses: list[Course]) -> str:
     """The chart's title: where the lines end, as far as words can hold it."""
-    ends = [
-        _("{value} for {who}", value=shown(course.at_last, course.indicator.unit), who=course.who)
-        for course in courses[:2]
-    ]
-    if not ends:
+    if not courses:
         return label
-    last = max(course.last for course in courses[:2])
-    return _("{label} in {year}: {ends}", label=label, year=last, ends=names.listed(ends))
+    first, *others = courses[:2]
+    value, who = shown(first.at_last, first.indicator.unit), first.who
+    ends = [_("{value} for {who}", value=value, who=who)]
+    for other in others:
+        value, who = shown(other.at_last, other.indicator.unit), other.who
+        ends.append(
+            _("{value} for {who}", value=value, who=who)
+            if other.last == first.last
+            else _("in {year} {value} for {who}", year=other.last, value=value, who=who)
+        )
+    return _("{label} in {year}: {ends}", label=label, year=first.last, ends=names.listed(ends))
 
 
 def small(lines: list[str]) -> tuple[str, str] | None:

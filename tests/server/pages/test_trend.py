@@ -112,6 +112,8 @@ def test_a_newer_edition_is_named_with_what_it_moves(isle: Session) -> None:
     assert "Edition 2" in plain(notice.text)
     assert "Life expectancy at birth of women of North in 2014" in plain(notice.text)
     assert page(isle, number=2, areas=("north",)).frame.notices == ()
+    for unread in (page(isle, "e67"), page(isle, first="2014")):  # type: ignore[arg-type]
+        assert [notice.word for notice in unread.frame.notices] == ["A newer edition stands"]
 
 
 def test_areas_that_are_not_there_and_questions_too_large_are_refused(isle: Session) -> None:

@@ -76,3 +76,15 @@ def test_small_numbers_are_named() -> None:
     told = say.small(["women of Little Auk"])
     assert told is not None
     assert "women of Little Auk" in told[1]
+
+
+def test_the_finding_gives_each_line_the_year_it_ends_in() -> None:
+    women = course(estimate(4.2, 3.9, 4.5))
+    men = replace(women, sex="m")
+    both = say.finding("Life expectancy", [women, men, men])
+    assert both == (
+        "Life expectancy in 2012: 82.0 for women of Northlade and 82.0 for men of Northlade"
+    )
+    apart = say.finding("Life expectancy", [women, replace(men, last="2009")])
+    assert apart.endswith("82.0 for women of Northlade and in 2009 82.0 for men of Northlade")
+    assert say.finding("Life expectancy", []) == "Life expectancy"
