@@ -44,6 +44,11 @@ class Config:
         return cls(**values)  # type: ignore[arg-type]
 
     @property
+    def file(self) -> Path:
+        """Where the database lives, unless it has an address of its own."""
+        return self.data / "ebbline.db"
+
+    @property
     def url(self) -> str:
         """The database address in force."""
-        return self.database_url or f"sqlite:///{(self.data / 'ebbline.db').resolve()}"
+        return self.database_url or f"sqlite:///{self.file.resolve()}"

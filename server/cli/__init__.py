@@ -1,6 +1,7 @@
 """The same actions from a terminal: `ebbline demo`, `ebbline hand-in`, `ebbline figure` ..."""
 
 import argparse
+import os
 import sys
 from collections.abc import Sequence
 from contextlib import ExitStack
@@ -44,10 +45,17 @@ def main(arguments: Sequence[str] | None = None) -> int:
             return 2
         asked = parser().parse_args(arguments)
         try:
-            return int(asked.run(asked, _with_options(config, asked)))
+            code = int(asked.run(asked, _with_options(config, asked)))
+            sys.stdout.flush()
         except REFUSALS as error:
             print(f"ebbline: {sentence(error)}", file=sys.stderr)
             return exit_code(error)
+        except KeyboardInterrupt:
+            return 130
+        except BrokenPipeError:  # who read along wanted no more: `ebbline figure ... | head`
+            os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+            return 141
+        return code
 
 
 def _with_options(config: Config, asked: argparse.Namespace) -> Config:

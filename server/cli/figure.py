@@ -52,7 +52,7 @@ def add(commands: Commands) -> None:
 
 def run(asked: argparse.Namespace, config: Config) -> int:
     with opened(config) as session:
-        number = asked.edition or newest(session, asked.collection)
+        number = newest(session, asked.collection) if asked.edition is None else asked.edition
         known = heading(session, asked.collection, number)
         held = holdings(session, asked.collection, number)
         found = [series(session, known, _question(asked, key, held)) for key in asked.indicator]

@@ -11,7 +11,10 @@ from server.store.migrating import schema_state
 
 
 def found(config: Config) -> tuple[str, str]:
-    """State of the schema (head, behind, empty), and where it is, without a password."""
+    """State of the schema (head, behind, empty), and where it is, without a password. To look makes
+    no file."""
+    if not config.database_url and not config.file.exists():
+        return "empty", config.url
     engine = make_engine(config.url)
     state, place = schema_state(engine), str(engine.url)
     engine.dispose()
@@ -42,6 +45,8 @@ def opened(config: Config) -> Iterator[Session]:
     """A session on the database, which must be up to date."""
     require_head(config)
     engine = make_engine(config.url)
-    with sessions(engine)() as session:
-        yield session
-    engine.dispose()
+    try:
+        with sessions(engine)() as session:
+            yield session
+    finally:
+        engine.dispose()

@@ -4,6 +4,7 @@ from server.accounts.viewer import NotAllowed
 from server.results.loading import NotInEdition
 from server.results.questions import BadAddress
 from server.results.series import TooLarge
+from server.routes.asking import NoSuchPage
 from server.sentences.text import _
 from server.store.errors import Refused
 
@@ -16,7 +17,7 @@ class Declined(Exception):
         self.exit_code = exit_code
 
 
-REFUSALS = (Declined, Refused, NotAllowed, BadAddress, NotInEdition, TooLarge)
+REFUSALS = (Declined, Refused, NotAllowed, BadAddress, NoSuchPage, NotInEdition, TooLarge)
 
 
 def sentence(error: Exception) -> str:

@@ -12,6 +12,9 @@ from server.cli.refusals import Declined
 from server.config import Config
 from server.sentences.text import _
 
+# what an address names where the host is one of these
+LINKED = {"0.0.0.0": "127.0.0.1", "::": "[::1]", "::1": "[::1]"}
+
 
 def add(commands: Commands) -> None:
     command = add_command(
@@ -39,7 +42,7 @@ def serve(config: Config) -> int:
     print(
         _(
             "Ebbline is at http://{host}:{port}/ (stop it with Ctrl-C).",
-            host=config.host,
+            host=LINKED.get(config.host, config.host),
             port=config.port,
         ),
         flush=True,

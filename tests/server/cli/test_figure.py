@@ -3,6 +3,9 @@
 import csv
 import io
 import json
+import os
+import subprocess
+import sys
 
 import pytest
 from starlette.testclient import TestClient
@@ -11,6 +14,7 @@ from server.app import create_app
 from server.config import Config
 from server.store.connect import make_engine, sessions
 from tests.factories import edition, gompertz_panel
+from tests.house.tree import ROOT
 from tests.server.cli.conftest import Ebbline
 from tests.server.web.site import browser
 
@@ -78,6 +82,8 @@ def test_several_indicators_each_in_its_own_unit(ebbline: Ebbline, isle: str) ->
         (("xx",), "The key “of” has the value “xx”; it can be e0, e65, median"),
         (("e0", "--collection", "reef"), "There is no collection reef; known: isle."),
         (("e0", "--edition", "7"), "There is no edition 7; known: 1."),
+        (("e0", "--edition", "0"), "There is no edition 0; known: 1."),
+        (("e0", "--collection", "a/b"), "“a/b” is no code of a collection"),
         (("e0", "--area", "east"), "north and rock"),
         (("e0", "--from", "2014", "--to", "2013"), "the first lies after the last"),
         (("e0", "--from", "14"), "a year has four digits"),
@@ -91,3 +97,28 @@ def test_what_cannot_be_printed_is_said_in_a_sentence(
     assert said.code == 2
     assert sentence in said.err
     assert said.out == ""
+
+
+def test_whoever_stops_reading_or_waiting_gets_no_traceback(isle: str) -> None:
+    """In a process of its own, since it ends with its standard output gone."""
+    words = [sys.executable, "-m", "server", "figure", "e0", "--collection", "isle"]
+    reading, writing = os.pipe()
+    os.close(reading)
+    surroundings = os.environ | {"EBBLINE_DATABASE_URL": isle}
+    with subprocess.Popen(
+        words, cwd=ROOT, env=surroundings, stdout=writing, stderr=subprocess.PIPE
+    ) as running:
+        os.close(writing)
+        _out, said = running.communicate()
+    assert (running.returncode, said) == (141, b"")
+
+
+def test_an_interruption_is_no_fault(
+    ebbline: Ebbline, isle: str, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def interrupted(*_asked: object) -> None:
+        raise KeyboardInterrupt
+
+    monkeypatch.setattr("server.cli.figure.series", interrupted)
+    said = ebbline("figure", "e0", "--collection", "isle")
+    assert (said.code, said.out, said.err) == (130, "", "")

@@ -23,6 +23,8 @@ def test_the_database_is_made_once(tmp_path: Path, capsys: pytest.CaptureFixture
     where = ("--data", str(tmp_path / "new"))
     assert main(["database", "--say", *where]) == 1
     assert "There is no database yet at" in capsys.readouterr().out
+    assert main(["editions", *where]) == 1
+    assert list(tmp_path.iterdir()) == []  # to look makes nothing
     assert main(["database", *where]) == 0
     assert "The database was made at" in capsys.readouterr().out
     assert main(["database", *where]) == 0
@@ -103,7 +105,7 @@ def test_a_database_or_language_that_is_not_to_be_had(
     sentence: str,
 ) -> None:
     monkeypatch.setenv(f"EBBLINE_{variable}", text)
-    assert main(["editions"]) in (1, 2)
+    assert main(["database"]) in (1, 2)
     said = capsys.readouterr().err
     assert sentence in said
     assert "secret" not in said
@@ -125,3 +127,15 @@ def test_every_command_explains_itself(capsys: pytest.CaptureFixture[str]) -> No
 
 def test_refusals_are_no_programming_errors() -> None:
     assert not {ValueError, KeyError, TypeError, Exception} & set(REFUSALS)
+
+
+def test_the_address_that_is_printed_can_be_opened(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    given: dict[str, object] = {}
+    monkeypatch.setattr("uvicorn.run", lambda _app, **settings: given.update(settings))
+    monkeypatch.setenv("EBBLINE_HOST", "0.0.0.0")
+    assert main(["database", "--data", str(tmp_path)]) == 0
+    assert main(["serve", "--data", str(tmp_path), "--port", "18431"]) == 0
+    assert "Ebbline is at http://127.0.0.1:18431/ " in capsys.readouterr().out
+    assert (given["host"], given["proxy_headers"]) == ("0.0.0.0", False)
