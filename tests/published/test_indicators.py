@@ -1,5 +1,6 @@
 """Indicators against values computed elsewhere, and against laws whose values are known exactly."""
 
+import csv
 import json
 from dataclasses import replace
 
@@ -36,6 +37,35 @@ def test_denmark(sex: str, key: str, column: str) -> None:
     """Eight digits are printed; all years of a sex in one call."""
     got = estimate(INDICATORS[key], denmark.panel(sex), SETTINGS_1)
     np.testing.assert_allclose(got.value, denmark.summary(sex, column), rtol=1e-6)
+
+
+@pytest.mark.parametrize("sex", denmark.SEXES)
+def test_groups_of_five_years_make_life_more_unequal_by_what_is_said(sex: str) -> None:
+    """The definitions of e-dagger and H say by how much."""
+    chain = run(denmark.panel(sex).regroup(denmark.ABRIDGED), SETTINGS_1)
+    for key, column, least, most in (
+        ("edagger", "edagger_A", 0.07, 0.16),
+        ("H", "H_A", 0.001, 0.0021),
+    ):
+        more = INDICATORS[key].value(chain) - denmark.summary(sex, column)
+        assert least < more.min() < more.max() < most
+
+
+def test_austrias_children_before_5() -> None:
+    """The printed survivors at 5, of 100,000 born: half a death is half the last digit."""
+    with open(denmark.HERE / "austria_males_1992.csv", encoding="utf-8", newline="") as file:
+        rows = list(csv.DictReader(file))
+    grid = AgeGrid(tuple(int(row["age"]) for row in rows))
+    deaths, years = (
+        np.array([float(row[name]) for row in rows]) for name in ("deaths", "population")
+    )
+    printed = np.array([float(row["ax"]) for row in rows[:-1]])
+    ax = np.append(printed, years[-1] / deaths[-1])
+    table = from_rates(grid, deaths / years, ax)
+    assert 1e5 * read("5q0", table) == pytest.approx(1e5 - float(rows[2]["lx"]), abs=0.5)
+    survivors = {int(row["age"]): float(row["lx"]) for row in rows}
+    expected = 1 - survivors[60] / survivors[15]
+    assert read("45q15", table) == pytest.approx(expected, abs=1e-5)
 
 
 @pytest.mark.parametrize("sex", denmark.SEXES)

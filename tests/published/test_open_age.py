@@ -5,11 +5,16 @@ True e-dagger by quadrature: 10.62, 10.24, 9.52. Closed at 85+ by the reciprocal
 rate it reads 11.02, 11.11, 11.24: it rises.
 """
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
 from engine.ages import AgeGrid
 from engine.chain import run
+from engine.estimates import Reason
+from engine.indicators import estimate
+from engine.indicators import find as find_indicator
 from engine.panel import Panel
 from engine.settings import find
 from engine.tables import LifeTable
@@ -59,10 +64,31 @@ def test_closing_at_85_by_the_reciprocal_reverses_the_trend() -> None:
 
 
 @pytest.mark.fast
+@pytest.mark.parametrize("key", ["edagger", "H", "mode", "mode_raw", "mode_parabola"])
+def test_what_would_be_reversed_is_not_shown(key: str) -> None:
+    """Three estimates in place of the rising figures: none, and why."""
+    panel = counts(85)
+    large = replace(panel, deaths=1e4 * panel.deaths, exposure=1e4 * panel.exposure)
+    names = np.array(["early", "later", "late"])
+    got = estimate(find_indicator(key), large, find("almanac-1"), streams=names)
+    assert np.isnan([got.value, got.low, got.high]).all()
+    assert (got.reason == Reason.OPEN_GROUP_TOO_LARGE).all()
+
+
+@pytest.mark.fast
 @pytest.mark.parametrize(("open_age", "settings"), [(110, "almanac-1"), (85, "almanac-1-gompertz")])
 def test_a_high_open_age_or_a_law_keeps_it(open_age: int, settings: str) -> None:
     table = run(counts(open_age), find(settings)).table
     np.testing.assert_allclose(years_lost(table), TRUE, atol=0.02)
+
+
+@pytest.mark.fast
+def test_another_law_than_the_true_one_errs_but_keeps_the_trend() -> None:
+    """Kannisto's law has fewer deaths at the highest ages than the true one, and so more spread."""
+    found = years_lost(run(counts(85), find("almanac-1-kannisto")).table)
+    assert (np.diff(found) < -0.3).all()
+    assert (found - TRUE > 0.1).all()
+    assert (found - TRUE < 0.35).all()
 
 
 @pytest.mark.fast
