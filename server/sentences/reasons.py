@@ -28,11 +28,13 @@ def reason(code: int, settings: Settings) -> str:
             least=whole(settings.least_exposure),
         ),
         Reason.AGE_NOT_ON_GRID: _(
-            "The age it begins at is not the beginning of an age group here."
+            "An age it begins or ends at is not the beginning of an age group here."
         ),
         Reason.MODE_AT_EDGE: _("Deaths have no peak below the last, open age group."),
         Reason.NO_DEATHS: _("Nobody died at the ages it is read from."),
-        Reason.TOO_FEW_AGES: _("There are too few age groups to read it from."),
+        Reason.TOO_FEW_AGES: _(
+            "There are too few age groups, or too few with deaths, to read it from."
+        ),
         Reason.NO_SAMPLING_INTERVAL: _(
             "The same deaths are counted on both sides, so that chance plays no part."
         ),

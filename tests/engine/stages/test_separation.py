@@ -40,6 +40,15 @@ def test_a_group_cannot_lose_more_than_enter_it() -> None:
 
 
 @pytest.mark.fast
+def test_at_the_bound_years_lived_follow_the_own_rate_alone() -> None:
+    """Ages 1 to 4 with so high a rate that all die: no longer a matter of the infant rate."""
+    made = chain((0, 1, 5, 10), [0.03, 0.9, 0.01, 0.1])
+    assert made.table.ax[1] == pytest.approx(1 / 0.9)
+    by_child = np.array([0.0, 1.0, 0.0, 0.0])
+    np.testing.assert_allclose(made.separation.pull(by_child), [0, -1 / 0.9**2, 0, 0])
+
+
+@pytest.mark.fast
 def test_an_open_group_without_deaths_is_not_closed() -> None:
     table = chain((0, 1, 5, 10), [0.01, 0.001, 0.001, 0.0]).table
     assert np.isnan(table.ax[-1])
