@@ -1,36 +1,19 @@
-"""What cannot be right, handed in or asked for, is answered by one sentence: as a page, as a
-problem in JSON, on a terminal. The database stays as it is, and the server goes on serving."""
+"""Files that cannot become an edition: one sentence as a page, as a problem in JSON, on a
+terminal."""
 
-import html
-import re
-import sqlite3
-from collections.abc import Iterator
-from contextlib import closing
 from dataclasses import dataclass
 from pathlib import Path
 
 import pytest
-from httpx2 import Response
 from starlette.testclient import TestClient
 
-from server.accounts.viewer import LOCAL
-from server.actions.commit_upload import commit_upload
-from server.app import create_app
-from server.cli import main
-from server.config import Config
 from server.intake.mapping import COLUMNS
-from server.store.connect import make_engine, sessions
-from server.store.migrating import migrate
-from tests.factories import NOON, checked_upload, counts_csv, stored_collection
-from tests.server.web.site import browser
+from tests.factories import counts_csv
+from tests.server.bad_input.conftest import LIMIT, PROBLEM, Terminal, words
 
-LIMIT = 1_000_000
 FILE = "counts.csv"
 SOUND = counts_csv().decode()
 ROWS = SOUND.split("\n")
-CHOICES = "&figures=released&settings=almanac-1"
-EDITION = "/c/saltmarsh/1"
-GOOD = f"{EDITION}/population-year?of=north.f.2001{CHOICES}"
 BASIS = {
     "people": "residents",
     "dated_by": "death",
@@ -38,95 +21,6 @@ BASIS = {
     "population_date": "1 July of each year",
     "source": "Statistics desk of the isle",
 }
-DRAFTS = {"upload", "upload_file"}  # a draft with faults is kept, so that it can be corrected
-PROBLEM = "application/problem+json"
-
-
-# ---- the place it happens in ---------------------------------------------------------------------
-
-
-@pytest.fixture(scope="module")
-def folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    """A data folder in which edition 1 of a collection stands."""
-    made = tmp_path_factory.mktemp("bad-input")
-    migrate(Config(data=made).url)
-    engine = make_engine(Config(data=made).url)
-    with sessions(engine)() as session:
-        stored_collection(session)
-        upload = checked_upload(session, counts_csv())
-        commit_upload(session, upload_id=upload.id, note="First.", by=LOCAL, now=NOON)
-    engine.dispose()
-    return made
-
-
-@pytest.fixture(scope="module")
-def running(folder: Path) -> Iterator[TestClient]:
-    with browser(create_app(Config(data=folder, upload_limit=LIMIT))) as reader:
-        yield reader
-
-
-@pytest.fixture
-def reader(running: TestClient, folder: Path) -> Iterator[TestClient]:
-    """A browser after whose faults no edition has changed and pages are still served."""
-    before = kept(folder)
-    yield running
-    assert kept(folder) == before
-    assert running.get(GOOD, headers={"Cache-Control": "no-cache"}).status_code == 200
-
-
-def kept(folder: Path) -> dict[str, list[tuple[object, ...]]]:
-    """Every row of every table but the drafts'."""
-    with closing(sqlite3.connect(folder / "ebbline.db")) as database:
-        names = [
-            name
-            for (name,) in database.execute(
-                "SELECT name FROM sqlite_master WHERE type = 'table' AND name NOT LIKE 'sqlite_%'"
-            )
-        ]
-        assert set(names) >= {"collection", "edition", "edition_event", "schedule", "area", "basis"}
-        return {
-            name: database.execute(f"SELECT * FROM {name} ORDER BY rowid").fetchall()
-            for name in names
-            if name not in DRAFTS
-        }
-
-
-def words(page: Response) -> str:
-    """What a page says, without its marks."""
-    text = re.sub(r"<(script|style).*?</\1>", " ", page.text, flags=re.DOTALL)
-    return " ".join(html.unescape(re.sub(r"<[^>]+>", " ", text)).split())
-
-
-@dataclass(frozen=True, slots=True)
-class Said:
-    code: int
-    out: str
-    err: str
-
-
-@pytest.fixture
-def ebbline(
-    folder: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
-) -> Iterator["Terminal"]:
-    """A terminal after whose faults no table has changed, drafts' neither."""
-    monkeypatch.setenv("EBBLINE_DATA", str(folder))
-    monkeypatch.setenv("EBBLINE_UPLOAD_LIMIT", str(LIMIT))
-    before = kept(folder)
-    yield Terminal(capsys)
-    assert kept(folder) == before
-
-
-class Terminal:
-    def __init__(self, capsys: pytest.CaptureFixture[str]) -> None:
-        self._capsys = capsys
-
-    def __call__(self, *arguments: str | Path) -> Said:
-        self._capsys.readouterr()
-        try:
-            code = main([str(one) for one in arguments])
-        except SystemExit as ended:
-            code = int(ended.code or 0)
-        return Said(code, *self._capsys.readouterr())
 
 
 # ---- files ---------------------------------------------------------------------------------------
@@ -393,116 +287,3 @@ def test_a_file_over_the_limit_on_the_terminal(ebbline: Terminal, tmp_path: Path
         f"ebbline: The file {path} is larger than 1 MB. Send fewer years at a time, or raise "
         "EBBLINE_UPLOAD_LIMIT.\n"
     )
-
-
-# ---- addresses -----------------------------------------------------------------------------------
-
-VIEWS = {
-    "population-year": f"of=north.f.2001{CHOICES}",
-    "comparison": f"this=north.f.2001&that=north.m.2001&of=e0{CHOICES}",
-    "trend": f"of=e0&area=north&sex=f&from=2001&to=2002{CHOICES}",
-    "contents": CHOICES.removeprefix("&"),
-}
-each_view = pytest.mark.parametrize("view", VIEWS)
-
-
-def told(reader: TestClient, view: str, query: str, status: int, sentence: str, at: str) -> None:
-    """As a page, and as a problem under the address of each twin."""
-    page = reader.get(f"{at}/{view}?{query}")
-    assert page.status_code == status
-    assert page.headers["content-type"].startswith("text/html")
-    assert sentence in words(page)
-    for twin in ("json", "csv", "xlsx"):
-        problem = reader.get(f"{at}/{view}.{twin}?{query}")
-        assert (problem.status_code, problem.headers["content-type"]) == (status, PROBLEM)
-        content = problem.json()
-        assert content["status"] == status
-        assert sentence in content["detail"]
-        assert content["instance"].startswith(f"{at}/{view}.{twin}?")
-
-
-@each_view
-def test_an_unknown_key(reader: TestClient, view: str) -> None:
-    sentence = "The address has the key “colour”, which this page does not know. It knows "
-    told(reader, view, f"{VIEWS[view]}&colour=blue", 400, sentence, EDITION)
-
-
-@each_view
-def test_a_collection_that_is_not_there(reader: TestClient, view: str) -> None:
-    sentence = "There is no collection reef; known: saltmarsh."
-    told(reader, view, VIEWS[view], 404, sentence, "/c/reef/1")
-
-
-@each_view
-def test_an_edition_that_is_not_there(reader: TestClient, view: str) -> None:
-    sentence = "There is no edition 7; known: 1."
-    told(reader, view, VIEWS[view], 404, sentence, "/c/saltmarsh/7")
-
-
-@pytest.mark.parametrize(
-    ("view", "old", "new", "sentence"),
-    [
-        (
-            "population-year",
-            "2001",
-            "1950",
-            "This edition does not hold north.f.1950, or not both its deaths and its",
-        ),
-        ("population-year", "north", "east", "Its areas are north and south;"),
-        ("population-year", "north.f.2001", "north", "“north” is not an area, sex and year."),
-        (
-            "comparison",
-            "north.m.2001",
-            "north.m.1950",
-            "does not hold north.m.1950, or not both its deaths",
-        ),
-        ("comparison", "of=e0", "of=joy", "The key “of” has the value “joy”; it can be e0, e65,"),
-        ("trend", "area=north", "area=east", "This edition has no area east. Its areas are north"),
-        (
-            "trend",
-            "from=2001&to=2002",
-            "from=1950&to=1951",
-            "from 1950 to 1951. Its years are 2001",
-        ),
-        ("trend", "sex=f", "sex=girls", "The key “sex” has the value “girls”; it can be f, m, p."),
-        ("contents", "almanac-1", "best", "The key “settings” has the value “best”; it can be"),
-    ],
-)
-def test_a_question_the_edition_cannot_answer(
-    reader: TestClient, view: str, old: str, new: str, sentence: str
-) -> None:
-    query = VIEWS[view].replace(old, new, 1)
-    status = reader.get(f"{EDITION}/{view}?{query}").status_code
-    assert status in (400, 404)
-    told(reader, view, query, status, sentence, EDITION)
-
-
-@pytest.mark.parametrize(
-    ("arguments", "sentence"),
-    [
-        (("e0", "--collection", "reef"), "There is no collection reef; known: saltmarsh."),
-        (("e0", "--edition", "7"), "There is no edition 7; known: 1."),
-        (("e0", "--area", "east"), "This edition has no area east. Its areas are north and south."),
-        (("e0", "--from", "1950", "--to", "1951"), "Its years are 2001 to 2002."),
-        (("joy",), "The key “of” has the value “joy”; it can be e0, e65,"),
-        (("e0", "--colour", "blue"), "unrecognized arguments: --colour blue"),
-        (("e0", "--sex", "girls"), "invalid choice: 'girls' (choose from"),
-    ],
-)
-def test_a_question_that_cannot_be_answered_on_the_terminal(
-    ebbline: Terminal, arguments: tuple[str, ...], sentence: str
-) -> None:
-    collection = () if "--collection" in arguments else ("--collection", "saltmarsh")
-    said = ebbline("figure", *arguments, *collection)
-    assert (said.code, said.out) == (2, "")
-    assert sentence in said.err
-    assert len(said.err.strip().split("\n")) == 1 or said.err.startswith("usage: ")
-
-
-def test_a_draft_that_is_not_there(reader: TestClient) -> None:
-    page = reader.get("/uploads/999/problems")
-    assert page.status_code == 404
-    assert "There is no upload 999" in words(page)
-    json = reader.get("/uploads/999/problems.json")
-    assert (json.status_code, json.headers["content-type"]) == (404, PROBLEM)
-    assert "There is no upload 999" in json.json()["detail"]
