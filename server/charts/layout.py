@@ -39,12 +39,14 @@ def _end_label(series: Series, measure: Measure) -> str:
 
 def _has_row(chart: Chart, measure: Measure, width: float) -> bool:
     cells = chart.foot_row
-    return bool(cells) and measure.foot > 0 and width >= len(cells) * _cell(chart, measure)
+    needed = len(cells) * _cell(chart, measure)
+    return bool(cells) and measure.foot > 0 and width + measure.left >= needed
 
 
 def _cell(chart: Chart, measure: Measure) -> float:
-    """Width that a figure under a bar needs, px."""
-    return 3 + CHARACTER * measure.foot / 14.5 * max(len(text) for _, text in chart.foot_row)
+    """Width that a figure under a bar needs, with the white beside it, px."""
+    longest = max((len(text) for _, text in chart.foot_row), default=0)
+    return measure.foot * (0.48 + CHARACTER / 14.5 * longest)
 
 
 class _Canvas:

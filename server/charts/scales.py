@@ -28,3 +28,13 @@ def log_ticks(low: float, high: float) -> tuple[float, ...]:
     """
     first, last = math.ceil(math.log10(low) - 1e-9), math.floor(math.log10(high) + 1e-9)
     return tuple(10.0**power for power in range(first, last + 1))
+
+
+def decimals(shown: tuple[float, ...], most: int = 6) -> int:
+    """As many decimals as all ticks of a scale need.
+
+    >>> decimals((-0.2, 0.0, 0.2)), decimals((0.0, 2.0))
+    (1, 0)
+    """
+    enough = (so for so in range(most) if all(round(at, so) == at for at in shown))
+    return next(enough, most)

@@ -19,6 +19,7 @@ from server.results.questions import (
 )
 from server.sentences import basis, names
 from server.sentences import comparison as say
+from server.sentences import contributions as ages_say
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.reasons import reason
 from server.sentences.standing import Headline
@@ -46,6 +47,7 @@ class ComparisonPage(Page):
 
     template: ClassVar[str] = "comparison/page.html"
     drawn: frozenset[str]  # keys of the pictures there are
+    not_parted: Sentence  # why H has no picture, where life expectancy has one
     further: tuple[Sentence, ...]
     computed: tuple[Sentence, ...]
     basis: tuple[Sentence, ...]
@@ -67,6 +69,7 @@ def build(session: Session, heading: Heading, question: ComparisonQuestion) -> C
         cautions=_cautions(found),
         twins=frames.twins(heading, question),
         drawn=frozenset(chart.key for chart in drawn),
+        not_parted=ages_say.not_parted(_why_not_parted(found)) if _why_not_parted(found) else (),
         further=_further(found),
         computed=_computed(found),
         basis=frames.basis(heading.edition.basis),
@@ -130,7 +133,7 @@ def _lead(found: Comparison) -> tuple[Sentence, ...]:
     if found.same:
         return ()
     if part is not None and asked.clear:
-        said.append(say.carried(*charts.most(found, part), part.difference))
+        said.append(ages_say.carried(*charts.most(found, part), part.difference))
     said.append(say.evenness(both, charts.asked(found, "H")))
     return tuple(sentence for sentence in said if sentence)
 
@@ -167,20 +170,19 @@ def _cautions(found: Comparison) -> tuple[Caution, ...]:
         say.counted_twice(tables.named(found, found.overlap).whole)
         if found.overlap and not found.same
         else None,
-        *_undefined(found),
+        (_("Not compared"), _why_not_parted(found)) if _why_not_parted(found) else None,
         basis.law(found.settings, found.grid.open_age) if modelled else None,
-        say.arithmetic() if both.this != both.that else None,
+        ages_say.arithmetic() if both.this != both.that else None,
         *basis.reading(found.settings),
     ]
     return tuple(Caution(word, text) for word, text in (pair for pair in told if pair))
 
 
-def _undefined(found: Comparison) -> list[basis.Told]:
-    """Why H has no contributions, where it has none."""
-    code = int(found.difference["H"].reason)
+def _why_not_parted(found: Comparison) -> str:
+    """Why H has no contributions; empty where it has them, or nothing could differ."""
     if "H" in found.contributions or found.same:
-        return []
-    return [(_("Not compared"), reason(code, found.settings))]
+        return ""
+    return reason(int(found.difference["H"].reason), found.settings)
 
 
 def _further(found: Comparison) -> tuple[Sentence, ...]:

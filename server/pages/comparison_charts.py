@@ -6,11 +6,13 @@ import numpy as np
 
 from engine.indicators import find
 from server.charts.chart import At, Chart, Series
+from server.charts.scales import decimals as decimals_of
 from server.charts.scales import ticks
 from server.pages.comparison_tables import PRINTED, RADIX, pair
 from server.pages.drawing import LONGER_LIFE, WHOLE_LIFE, at_age, places, values
 from server.results.comparison import Comparison, Contribution, Side
 from server.sentences import comparison as say
+from server.sentences import contributions as ages_say
 from server.sentences.numbers import number
 from server.sentences.text import _
 
@@ -39,7 +41,7 @@ def survivors(found: Comparison, source: str) -> Chart | None:
     both, (_low, top) = pair(found), axis(found)
     return Chart(
         key="survivors",
-        finding=say.survivors(both, asked(found, "e0"), share, LATE),
+        finding=ages_say.survivors(asked(found, "e0"), share, LATE),
         unit=_(
             "Survivors to each age, of 100,000 born; the space between the curves is the difference"
             " in life expectancy"
@@ -104,15 +106,18 @@ def life_expectancy(found: Comparison, source: str) -> Chart | None:
     if part is None or found.same:
         return None
     span, carried = most(found, part)
+    both = pair(found)
     return _bars(
         found,
         part,
         key="by-age",
         of="e0",
-        finding=say.by_age(asked(found, "e0"), span, carried),
+        finding=ages_say.by_age(asked(found, "e0"), span, carried),
         unit=_(
-            "Contribution of each age group to the difference in life expectancy at birth, with"
-            " {level} % intervals",
+            "Contribution of each age group to the difference in life expectancy at birth, {this}"
+            " less {that}, with {level} % intervals; hatched bars work against the rest",
+            this=both.this.whole,
+            that=both.that.whole,
             level=round(100 * found.settings.level),
         ),
         title=_("years"),
@@ -133,8 +138,11 @@ def unevenness(found: Comparison, source: str) -> Chart | None:
         part,
         key="unevenness",
         of="H",
-        finding=say.unevenness(
-            float(scaled[starts < age].sum()), float(scaled[starts >= age].sum()), age
+        finding=ages_say.unevenness(
+            asked(found, "H"),
+            float(scaled[starts < age].sum()),
+            float(scaled[starts >= age].sum()),
+            age,
         ),
         unit=_(
             "Contribution of each age group to the difference in relative unevenness (H),"
@@ -154,17 +162,18 @@ def turning(found: Comparison, part: Contribution) -> int:
 
 
 def most(found: Comparison, part: Contribution) -> tuple[str, float]:
-    """The shortest run of groups that holds at least half of the difference, and what it holds."""
+    """The shortest run of groups that holds at least half of the difference, the one with most
+    where several are as short; and what it holds."""
     starts, total = found.groups.starts, float(part.by_group.sum())
     ends = (*starts[1:], max(starts[-1] + 5, 105))
     sums = np.concatenate([[0.0], np.cumsum(part.by_group)])
-    best = (ends[-1], 0, len(starts))
+    best = (float(ends[-1]), 0.0, 0, len(starts))
     for begin in range(len(starts)):
         for end in range(begin + 1, len(starts) + 1):
             held = (sums[end] - sums[begin]) / total if total else 0.0
-            if held >= 0.5 and ends[end - 1] - starts[begin] < best[0]:
-                best = (ends[end - 1] - starts[begin], begin, end)
-    _width, begin, end = best
+            if held >= 0.5:
+                best = min(best, (float(ends[end - 1] - starts[begin]), -held, begin, end))
+    _width, _held, begin, end = best
     carried = float(sums[end] - sums[begin])
     if end == len(starts):
         return _("{first} and over", first=starts[begin]), carried
@@ -208,8 +217,7 @@ def _bars(
         y_range=(bottom - room if bottom < 0 else 0.0, ceiling + room),
         y_ticks=shown,
         y_text=tuple(
-            number(at, max(0, decimals if abs(at) < 1 else decimals - 1), signed=bottom < 0)
-            for at in shown
+            number(at, decimals_of(shown), signed=bottom < 0) if at else "0" for at in shown
         ),
         hover="%{customdata}: %{y:.2f}",
         table="contributions",

@@ -8,9 +8,10 @@ from engine.ages import Array
 from engine.indicators import find
 from server.exports.table import Cell, Column, Row, Table
 from server.pages.cells import columns, gap, number, triple
-from server.results.comparison import DECOMPOSED, Comparison, Contribution
+from server.results.comparison import DECOMPOSED, Comparison, Contribution, Side
 from server.results.questions import PopulationYear
 from server.sentences import comparison as say
+from server.sentences import contributions as ages_say
 from server.sentences.text import _
 
 RADIX = 100_000
@@ -31,8 +32,8 @@ def figures(found: Comparison) -> Table:
     both = pair(found)
     heads = (
         Column("indicator", _("Indicator")),
-        *columns("this", both.short(both.this), 1),
-        *columns("that", both.short(both.that), 1),
+        *columns("this", _head(both.short(both.this), found.this), 1),
+        *columns("that", _head(both.short(both.that), found.that), 1),
         *columns("difference", _("difference"), 1, signed=True),
     )
     note = _(
@@ -44,6 +45,12 @@ def figures(found: Comparison) -> Table:
     )
     rows = tuple(_figure_row(found, key) for key in found.difference)
     return Table("figures", _("The figures of both sides"), heads, rows, note)
+
+
+def _head(label: str, side: Side) -> str:
+    if side.loaded.status != "provisional":
+        return label
+    return _("{label}, provisional", label=label)
 
 
 def _figure_row(found: Comparison, key: str) -> Row:
@@ -117,7 +124,8 @@ def _missing(found: Comparison, key: str) -> Cell:
 def _remainder_words(found: Comparison) -> str:
     """What the row of its own for what no age accounts for is called; empty where it is not owed:
     rounding is all there is."""
-    told = (say.remainder(part.remainder, part.difference) for part in found.contributions.values())
+    parts = found.contributions.values()
+    told = (ages_say.remainder(part.remainder, part.difference) for part in parts)
     return next((words for words in told if words), "")
 
 

@@ -195,17 +195,18 @@ def gain(found: Findings, source: str) -> Chart | None:
 
 
 def _most(grid: AgeGrid, gain: Array) -> tuple[str, float]:
-    """The shortest run of age groups with at least half of the gain, and its share."""
+    """The shortest run of age groups with at least half of the gain, the one with most of it where
+    several are as short; and its share."""
     total, last = float(gain.sum()), len(grid) - 1
-    best: tuple[float, int, int] = (math.inf, last, last + 1)  # the open group, if no other will do
-    sums = np.concatenate([[0.0], np.cumsum(gain)])
+    best = (math.inf, 0.0, last, last + 1)  # the open group, if no other will do
+    sums = np.concatenate([[0.0], np.cumsum(gain)]) / total
     for begin in range(last):
         for end in range(begin + 1, last + 1):
-            width = grid.starts[end] - grid.starts[begin]
-            if sums[end] - sums[begin] >= total / 2 and width < best[0]:
-                best = (width, begin, end)
-    _width, begin, end = best
-    share = float(sums[end] - sums[begin]) / total
+            share = float(sums[end] - sums[begin])
+            if share >= 0.5:
+                best = min(best, (grid.starts[end] - grid.starts[begin], -share, begin, end))
+    _width, _share, begin, end = best
+    share = float(sums[end] - sums[begin])
     if begin == last:
         return grid.labels[last], share
     return _("{first} to {last}", first=grid.starts[begin], last=grid.starts[end] - 1), share

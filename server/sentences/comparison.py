@@ -1,6 +1,5 @@
 """What is said of two population-years: the answer, and the finding of each picture."""
 
-import math
 from dataclasses import dataclass
 
 from engine.estimates import Estimate
@@ -16,7 +15,7 @@ from server.sentences.movements import (
     size_limits,
     years,
 )
-from server.sentences.numbers import number, whole
+from server.sentences.numbers import number
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
 
@@ -207,112 +206,42 @@ def _size(of: Answer) -> Piece:
     return bracketed(text)
 
 
-def carried(ages: str, part: float, difference: float, unit_decimals: int = 1) -> Sentence:
-    """Which ages hold most of a difference in life expectancy."""
-    return phrase(
-        _("Ages {ages} carry {part} of the {whole}."),
-        ages=ages,
-        part=number(abs(part), unit_decimals),
-        whole=years(difference, unit_decimals),
-    )
-
-
 def evenness(pair: Pair, of: Answer) -> Sentence:
     """Whether lives were of more equal length; `of` is H."""
     if of.kind in (Movement.UNKNOWN, Movement.WITHOUT_INTERVAL):
         return ()
-    here, there = (shown(side, of.indicator.unit) for side in (of.this, of.that))
+    parts = {
+        "here": shown(of.this, of.indicator.unit),
+        "there": shown(of.that, of.indicator.unit),
+        "this": pair.this.who if pair.same_year else pair.this.whole,
+        "that": pair.that.who if pair.same_year else pair.that.whole,
+    }
     if of.kind in (Movement.NOT_CLEAR, Movement.TOO_SMALL):
         return phrase(
             _(
                 "How unequal length of life is did not clearly differ: relative unevenness {here}"
                 " against {there}."
             ),
-            here=here,
-            there=there,
+            **parts,
         )
-    if of.kind in HIGHER:
-        text = (
-            _(
-                "Length of life also became less even: relative unevenness rose from {there} to"
-                " {here}."
-            )
-            if pair.same_people and pair.this.period > pair.that.period
-            else _(
-                "Length of life was less even on this side: relative unevenness {here} against"
-                " {there}."
-            )
-        )
-    else:
-        text = (
-            _(
-                "Length of life also became more even: relative unevenness fell from {there} to"
-                " {here}."
-            )
-            if pair.same_people and pair.this.period > pair.that.period
-            else _(
-                "Length of life was more even on this side: relative unevenness {here} against"
-                " {there}."
-            )
-        )
-    return phrase(text, here=here, there=there)
-
-
-def survivors(pair: Pair, of: Answer, share: float, from_age: int) -> str:
-    """`of` is life expectancy; `share` of its difference lies at `from_age` and above."""
-    if not of.clear:
-        return _("Survivors to each age on the two sides")
-    amount = years(float(of.difference.value))
-    if not 0 < share < 1:
-        return _("The hatched space is the difference: {amount}", amount=amount)
-    return _(
-        "The hatched space is the difference: {amount}, {share} of it lived past {age}",
-        amount=amount,
-        share=f"{whole(100 * share)}\N{NO-BREAK SPACE}%",
-        age=from_age,
-    )
-
-
-def by_age(of: Answer, ages: str, part: float) -> str:
-    """What the picture of contributions to life expectancy shows; `ages` hold `part` of it."""
-    if not of.clear:
-        return _("What each age adds to the difference in life expectancy")
-    return _(
-        "Ages {ages} make most of the difference: {part} of {whole}",
-        ages=ages,
-        part=number(abs(part), 1),
-        whole=years(float(of.difference.value)),
-    )
-
-
-def unevenness(below: float, above: float, age: int) -> str:
-    """Contributions to H summed below and above an age, in thousandths."""
-
-    def says(value: float) -> str:
-        return number(value, 1, signed=True)
-
-    if below < 0 < above:
-        return _(
-            "Ages below {age} make length of life more even ({below} thousandths of H); those"
-            " above work against it ({above})",
-            age=age,
-            below=says(below),
-            above=says(above),
-        )
-    if above < 0 < below:
-        return _(
-            "Ages below {age} make length of life less even (+{below} thousandths of H); those"
-            " above work against it ({above})",
-            age=age,
-            below=number(below, 1),
-            above=says(above),
-        )
-    return _(
-        "Ages below {age} move relative unevenness by {below} thousandths, those above by {above}",
-        age=age,
-        below=says(below),
-        above=says(above),
-    )
+    later = pair.same_people and pair.this.period > pair.that.period
+    texts = {
+        (True, True): _(
+            "Length of life also became less even: relative unevenness rose from {there} to {here}."
+        ),
+        (True, False): _(
+            "Length of life was less even among {this} than among {that}: relative unevenness"
+            " {here} against {there}."
+        ),
+        (False, True): _(
+            "Length of life also became more even: relative unevenness fell from {there} to {here}."
+        ),
+        (False, False): _(
+            "Length of life was more even among {this} than among {that}: relative unevenness"
+            " {here} against {there}."
+        ),
+    }
+    return phrase(texts[of.kind in HIGHER, later], **parts)
 
 
 def regrouped(sides: list[str], ages: str, open_age: int) -> tuple[str, str]:
@@ -330,18 +259,4 @@ def counted_twice(which: str) -> tuple[str, str]:
         "The deaths of {which} are part of both sides. The intervals of the differences and of the"
         " ages’ contributions count them once.",
         which=which,
-    )
-
-
-def remainder(value: float, difference: float) -> str:
-    """Why a row of its own stands beside the ages; empty where rounding is all there is."""
-    if not math.isfinite(value) or abs(value) <= 1e-9 * max(abs(difference), 1e-9):
-        return ""
-    return _("rule of the first year, or a law's weights")
-
-
-def arithmetic() -> tuple[str, str]:
-    return _("Contributions"), _(
-        "A contribution is owed to an age in the arithmetic sense: it names no cause. Its interval"
-        " covers chance in deaths only."
     )

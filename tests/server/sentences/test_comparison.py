@@ -6,6 +6,7 @@ from hypothesis import given
 from engine.estimates import Estimate
 from engine.indicators import INDICATORS
 from server.sentences import comparison as say
+from server.sentences import contributions
 from server.sentences.movements import Movement
 from server.sentences.pieces import Sentence, plain
 from tests.server.sentences.test_movements import differences, estimate
@@ -72,7 +73,7 @@ def test_another_indicator_is_named() -> None:
 @given(differences())
 def test_no_direction_is_claimed_that_the_interval_does_not_bear_out(change: Estimate) -> None:
     pair, of = say.Pair(MEN_LATE, WOMEN), asked(change)
-    said = words(say.answer(pair, of, "")) + say.by_age(of, "60 to 84", 1.0)
+    said = words(say.answer(pair, of, "")) + contributions.by_age(of, "60 to 84", 1.0)
     directed = any(word in said for word in ("more of life", "less of life", "make most"))
     assert directed == of.clear
     if of.clear:
@@ -99,31 +100,13 @@ def test_evenness_through_time_and_between_places() -> None:
     assert "became more even: relative unevenness fell from 0.160 to 0.132" in words(
         say.evenness(say.Pair(MEN_LATE, MEN_EARLY), fell)
     )
-    assert "was more even on this side: relative unevenness 0.132 against 0.160" in words(
-        say.evenness(say.Pair(MEN_LATE, WOMEN), fell)
-    )
-    turned = say.evenness(say.Pair(MEN_EARLY, MEN_LATE), fell)
-    assert "on this side" in words(turned)
+    apart = words(say.evenness(say.Pair(MEN_LATE, WOMEN), fell))
+    assert apart.endswith(": relative unevenness 0.132 against 0.160.")
+    assert f"more even among {MEN_LATE.who} than among {WOMEN.who}" in apart
+    turned = words(say.evenness(say.Pair(MEN_EARLY, MEN_LATE), fell))
+    assert f"more even among {MEN_EARLY.whole} than among {MEN_LATE.whole}" in turned
 
 
 def test_a_side_is_labelled_by_what_tells_it_from_the_other() -> None:
     assert say.Pair(MEN_LATE, MEN_EARLY).short(MEN_EARLY) == "men, 1992"
     assert say.Pair(MEN_LATE, WOMEN).short(WOMEN) == "Tollbay, women"
-
-
-@pytest.mark.parametrize(
-    ("below", "above", "said"),
-    [
-        (-18.4, 10.2, "more even (−18.4 thousandths of H); those above work against it (+10.2)"),
-        (11.3, -1.0, "less even (+11.3 thousandths of H); those above work against it (−1.0)"),
-        (-3.0, -2.0, "by −3.0 thousandths, those above by −2.0"),
-    ],
-)
-def test_the_two_signs_of_unevenness(below: float, above: float, said: str) -> None:
-    assert said in say.unevenness(below, above, 80)
-
-
-def test_a_remainder_gets_its_row_only_beyond_rounding() -> None:
-    assert say.remainder(1e-12, 0.5) == ""
-    assert say.remainder(1e-6, 0.5) != ""
-    assert say.remainder(0.0, 0.0) == ""

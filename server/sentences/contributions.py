@@ -1,0 +1,107 @@
+"""What is said of the ages that a difference is made of, and the findings of those pictures."""
+
+import math
+
+from server.sentences.comparison import Answer
+from server.sentences.movements import years
+from server.sentences.numbers import number, whole
+from server.sentences.pieces import Sentence, phrase
+from server.sentences.text import _
+
+
+def carried(ages: str, part: float, difference: float, unit_decimals: int = 1) -> Sentence:
+    """Which ages hold most of a difference in life expectancy."""
+    return phrase(
+        _("Ages {ages} carry {part} of the {whole}."),
+        ages=ages,
+        part=number(abs(part), unit_decimals),
+        whole=years(difference, unit_decimals),
+    )
+
+
+def survivors(of: Answer, share: float, from_age: int) -> str:
+    """`of` is life expectancy; `share` of its difference lies at `from_age` and above."""
+    if not of.clear:
+        return _("Survivors to each age on the two sides")
+    amount = years(float(of.difference.value))
+    if not 0 < share < 1:
+        return _("The hatched space is the difference: {amount}", amount=amount)
+    return _(
+        "The hatched space is the difference: {amount}, {share} of it lived past {age}",
+        amount=amount,
+        share=f"{whole(100 * share)}\N{NO-BREAK SPACE}%",
+        age=from_age,
+    )
+
+
+def by_age(of: Answer, ages: str, part: float) -> str:
+    """What the picture of contributions to life expectancy shows; `ages` hold `part` of it."""
+    if not of.clear:
+        return _("What each age adds to the difference in life expectancy")
+    return _(
+        "Ages {ages} make most of the difference: {part} of {whole}",
+        ages=ages,
+        part=number(abs(part), 1),
+        whole=years(float(of.difference.value)),
+    )
+
+
+def unevenness(of: Answer, below: float, above: float, age: int) -> str:
+    """Contributions to H, which `of` is, summed below and above an age, in thousandths. Only of a
+    clear difference is it said which way the ages turn it, the stronger ones first."""
+    parts = {
+        "age": age,
+        "below": number(below, 1, signed=True),
+        "above": number(above, 1, signed=True),
+    }
+    if not (of.clear and below * above < 0):
+        return _(
+            "Ages below {age} move relative unevenness by {below} thousandths, those above by"
+            " {above}",
+            **parts,
+        )
+    texts = {
+        (True, True): _(
+            "Ages below {age} make length of life less even ({below} thousandths of H); those"
+            " above work against it ({above})",
+            **parts,
+        ),
+        (True, False): _(
+            "Ages below {age} make length of life more even ({below} thousandths of H); those"
+            " above work against it ({above})",
+            **parts,
+        ),
+        (False, True): _(
+            "Ages from {age} on make length of life less even ({above} thousandths of H); those"
+            " below work against it ({below})",
+            **parts,
+        ),
+        (False, False): _(
+            "Ages from {age} on make length of life more even ({above} thousandths of H); those"
+            " below work against it ({below})",
+            **parts,
+        ),
+    }
+    return texts[abs(below) >= abs(above), below + above > 0]
+
+
+def not_parted(why: str) -> Sentence:
+    """In place of the picture of contributions to H."""
+    return phrase(
+        _("For unevenness (H) the ages’ parts cannot be given. {why}"),
+        why=why,
+    )
+
+
+def remainder(value: float, difference: float) -> str:
+    """Why a row of its own stands beside the ages; empty where rounding is all there is."""
+    if not math.isfinite(value) or abs(value) <= 1e-9 * max(abs(difference), 1e-9):
+        return ""
+    return _("rule of the first year, or a law's weights")
+
+
+def arithmetic() -> tuple[str, str]:
+    return _("Contributions"), _(
+        "A contribution is owed to an age in the arithmetic sense: it names no cause. Its interval"
+        " covers chance in deaths only."
+    )
