@@ -17,6 +17,19 @@ from tests import postgres
 BOTH = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgres)]
 _NUMBERS = count(1)
 
+# files of tests that take five seconds or more together: the working loop leaves them out
+SLOW = {
+    "tests/house/test_pages.py",
+    "tests/server/actions/test_rebuild_editions.py",
+    "tests/server/cli/test_editions.py",
+    "tests/server/pages/test_comparison.py",
+    "tests/server/results/test_comparison.py",
+    "tests/server/routes/test_population_year.py",
+    "tests/server/routes/test_statements.py",
+    "tests/server/routes/test_uploads.py",
+    "tests/server/store/test_histories.py",
+}
+
 
 def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
     """The working loop is everything that is not marked as something slower.
@@ -25,6 +38,8 @@ def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
     `tryfirst` or `trylast` would break the one or the other.
     """
     for item in items:
+        if item.path.relative_to(item.config.rootpath).as_posix() in SLOW:
+            item.add_marker("slow")
         if not any(item.get_closest_marker(name) for name in ("slow", "browser", "postgres")):
             item.add_marker("fast")
 
