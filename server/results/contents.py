@@ -22,7 +22,7 @@ class ContentsQuestion:
 
     @classmethod
     def parse(cls, items: Items) -> Self:
-        keys = Keys(cls.view, items, once=("figures", "settings"))
+        keys = Keys(items, once=("figures", "settings"))
         return cls(keys.figures(), keys.settings())
 
     def canonical(self) -> str:

@@ -94,7 +94,7 @@ class PopulationYearQuestion:
 
     @classmethod
     def parse(cls, items: Items) -> Self:
-        keys = Keys(cls.view, items, populations=("of",), once=("figures", "settings"))
+        keys = Keys(items, populations=("of",), once=("figures", "settings"))
         return cls(keys.population("of"), keys.figures(), keys.settings())
 
     def canonical(self) -> str:
@@ -117,9 +117,7 @@ class ComparisonQuestion:
 
     @classmethod
     def parse(cls, items: Items) -> Self:
-        keys = Keys(
-            cls.view, items, populations=("this", "that"), once=("of", "figures", "settings")
-        )
+        keys = Keys(items, populations=("this", "that"), once=("of", "figures", "settings"))
         return cls(
             keys.population("this"),
             keys.population("that"),
@@ -160,7 +158,6 @@ class TrendQuestion:
     @classmethod
     def parse(cls, items: Items) -> Self:
         keys = Keys(
-            cls.view,
             items,
             once=("of", "from", "to", "figures", "settings"),
             many=("area", "sex"),
@@ -236,14 +233,12 @@ class Keys:
 
     def __init__(
         self,
-        view: str,
         items: Items,
         *,
         populations: tuple[str, ...] = (),
         once: tuple[str, ...] = (),
         many: tuple[str, ...] = (),
     ) -> None:
-        self._view = view
         self._items = list(items)
         parts = tuple(f"{key}_{part}" for key in populations for part in PARTS)
         known = (*populations, *many, *once)

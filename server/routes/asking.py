@@ -71,7 +71,7 @@ class Asked(Generic[Asks]):
     heading: Heading
     question: Asks
     address: str
-    twin: str  # csv, xlsx, json; empty for the page
+    form: str  # html, or that of a twin
     table: str  # which table a CSV holds; empty: the page's first
 
 
@@ -90,13 +90,7 @@ def ask(
     `complete` fills in what the question leaves open from what the edition holds.
     Raises: Elsewhere to the canonical spelling; UnknownKey, BadValue; Missing, NotInEdition.
     """
-    if twin and twin not in TWINS:
-        raise NoSuchPage(
-            _(
-                "There is no .{twin} of this page; there are .csv, .xlsx and .json.",
-                twin=twin,
-            )
-        )
+    asked = form(twin)
     items = request.query_params.multi_items()
     tables = [text for key, text in items if twin == "csv" and key == "table"]
     question = view.parse((key, text) for key, text in items if not (tables and key == "table"))
@@ -116,7 +110,16 @@ def ask(
     )
     if place != f"{request.url.path}?{request.url.query}":
         raise Elsewhere(place)
-    return Asked(known, question, place, twin, tables[0] if tables else "")
+    return Asked(known, question, place, asked, tables[0] if tables else "")
+
+
+def form(twin: str) -> str:
+    """The form that the suffix of an address asks for. NoSuchPage where there is none of it."""
+    if twin and twin not in TWINS:
+        raise NoSuchPage(
+            _("There is no .{twin} of this page; there are .csv, .xlsx and .json.", twin=twin)
+        )
+    return twin or "html"
 
 
 def code(text: str) -> str:
@@ -153,6 +156,6 @@ def answer(request: Request, asked: Asked[Asks], build: Callable[[], Page]) -> R
         request,
         build,
         tag_parts=(asked.heading,),  # all that can change it, beside its address and the build
-        form=asked.twin or "html",
+        form=asked.form,
         table=asked.table,
     )

@@ -1,9 +1,8 @@
 """Collections, their editions, and what an edition holds: /collections, /c/{collection} ..."""
 
 import datetime as dt
-from typing import Annotated
 
-from fastapi import APIRouter, Form, Request, Response
+from fastapi import APIRouter, Request, Response
 
 from server.accounts.viewer import Right
 from server.actions.reinstate_edition import reinstate_edition
@@ -13,9 +12,10 @@ from server.pages import contents as contents_page
 from server.pages import editions as editions_page
 from server.results.contents import ContentsQuestion
 from server.routes.asking import READ, SessionDep, ViewerDep, answer, ask, code, needs
-from server.routes.plain import form, keys
+from server.routes.forms import FormDep, text
+from server.routes.plain import show
 from server.store import collections
-from server.web.render import redirect, respond
+from server.web.render import redirect
 
 router = APIRouter()
 VIEW = ContentsQuestion.view
@@ -24,15 +24,8 @@ VIEW = ContentsQuestion.view
 @router.api_route("/collections", methods=READ, dependencies=[needs(Right.READ)])
 @router.api_route("/collections.{twin}", methods=READ, dependencies=[needs(Right.READ)])
 def show_collections(request: Request, session: SessionDep, twin: str = "") -> Response:
-    given = keys(request, *(("table",) if twin == "csv" else ()))
     known = collections.all_collections(session)
-    return respond(
-        request,
-        lambda: collections_page.build(session),
-        tag_parts=known,
-        form=form(twin),
-        table=given.get("table", ""),
-    )
+    return show(request, lambda: collections_page.build(session), tag_parts=known, twin=twin)
 
 
 @router.api_route("/c/{collection}/editions", methods=READ, dependencies=[needs(Right.READ)])
@@ -40,19 +33,17 @@ def show_collections(request: Request, session: SessionDep, twin: str = "") -> R
 def show_editions(
     request: Request, session: SessionDep, collection: str, twin: str = ""
 ) -> Response:
-    given = keys(request, *(("table",) if twin == "csv" else ()))
     known = collections.find(session, code(collection))
-    return respond(
-        request,
-        lambda: editions_page.build(session, known.code),
-        tag_parts=(known,),
-        form=form(twin),
-        table=given.get("table", ""),
+    return show(
+        request, lambda: editions_page.build(session, known.code), tag_parts=(known,), twin=twin
     )
 
 
 @router.api_route("/c/{collection}", methods=READ, dependencies=[needs(Right.READ)])
 @router.api_route(f"/c/{{collection}}/{VIEW}", methods=READ, dependencies=[needs(Right.READ)])
+@router.api_route(
+    f"/c/{{collection}}/{VIEW}.{{twin}}", methods=READ, dependencies=[needs(Right.READ)]
+)
 @router.api_route(
     f"/c/{{collection}}/{{edition:int}}/{VIEW}", methods=READ, dependencies=[needs(Right.READ)]
 )
@@ -74,22 +65,23 @@ def show_contents(
     )
 
 
-Note = Annotated[str, Form()]
-
-
 @router.post("/c/{collection}/{edition:int}/withdraw", dependencies=[needs(Right.WITHDRAW)])
 def withdraw(
-    session: SessionDep, viewer: ViewerDep, collection: str, edition: int, note: Note = ""
+    session: SessionDep, viewer: ViewerDep, collection: str, edition: int, form: FormDep
 ) -> Response:
     now = dt.datetime.now(dt.UTC)
-    withdraw_edition(session, collection=collection, number=edition, note=note, by=viewer, now=now)
+    withdraw_edition(
+        session, collection=collection, number=edition, note=text(form, "note"), by=viewer, now=now
+    )
     return redirect(f"/c/{collection}/{edition}/{VIEW}", status=303)
 
 
 @router.post("/c/{collection}/{edition:int}/reinstate", dependencies=[needs(Right.WITHDRAW)])
 def reinstate(
-    session: SessionDep, viewer: ViewerDep, collection: str, edition: int, note: Note = ""
+    session: SessionDep, viewer: ViewerDep, collection: str, edition: int, form: FormDep
 ) -> Response:
     now = dt.datetime.now(dt.UTC)
-    reinstate_edition(session, collection=collection, number=edition, note=note, by=viewer, now=now)
+    reinstate_edition(
+        session, collection=collection, number=edition, note=text(form, "note"), by=viewer, now=now
+    )
     return redirect(f"/c/{collection}/{edition}/{VIEW}", status=303)

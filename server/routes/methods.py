@@ -5,8 +5,7 @@ from fastapi import APIRouter, Request, Response
 from server.accounts.viewer import Right
 from server.pages import methods, words
 from server.routes.asking import READ, needs
-from server.routes.plain import form, keys
-from server.web.render import respond
+from server.routes.plain import show
 
 router = APIRouter(dependencies=[needs(Right.READ)])
 
@@ -14,13 +13,9 @@ router = APIRouter(dependencies=[needs(Right.READ)])
 @router.api_route("/methods", methods=READ)
 @router.api_route("/methods.{twin}", methods=READ)
 def show_methods(request: Request, twin: str = "") -> Response:
-    given = keys(request, *(("table",) if twin == "csv" else ()))
-    return respond(
-        request, methods.build, tag_parts=(), form=form(twin), table=given.get("table", "")
-    )
+    return show(request, methods.build, tag_parts=(), twin=twin)
 
 
 @router.api_route("/words", methods=READ)
 def show_words(request: Request) -> Response:
-    keys(request)
-    return respond(request, words.build, tag_parts=())
+    return show(request, words.build, tag_parts=())

@@ -1,11 +1,8 @@
 """From files to an edition: /uploads, /uploads/new, /uploads/{upload} and its steps."""
 
 import datetime as dt
-from collections.abc import AsyncIterator
-from typing import Annotated
 
-from fastapi import APIRouter, Depends, Request, Response
-from starlette.datastructures import FormData, UploadFile
+from fastapi import APIRouter, Request, Response
 
 from server.accounts.viewer import Right
 from server.actions.check_upload import check_upload
@@ -19,37 +16,28 @@ from server.intake.mapping import ROLES
 from server.pages import upload as upload_page
 from server.pages import upload_new, upload_problems, upload_reading
 from server.pages import uploads as uploads_page
+from server.routes import plain
 from server.routes.asking import READ, Elsewhere, SessionDep, ViewerDep, needs
-from server.routes.plain import form as asked_form
-from server.routes.plain import keys
+from server.routes.forms import FormDep, file, text
 from server.routes.reading_form import basis, mappings
 from server.store import uploads
 from server.web.problem import Refusal
-from server.web.render import redirect, render, respond
+from server.web.render import redirect, render
 
 router = APIRouter()
 MAY_READ = [needs(Right.READ)]
 MAY_UPLOAD = [needs(Right.UPLOAD)]
 
 
-async def read_form(request: Request) -> AsyncIterator[FormData]:
-    """All fields of a form, files too; these are closed once the answer is made."""
-    async with request.form() as form:
-        yield form
-
-
-FormDep = Annotated[FormData, Depends(read_form)]
-
-
 @router.api_route("/uploads", methods=READ, dependencies=MAY_READ)
 def show_all(request: Request, session: SessionDep) -> Response:
-    keys(request)
+    plain.keys(request)
     return render(request, uploads_page.build(session))
 
 
 @router.api_route("/uploads/new", methods=READ, dependencies=MAY_READ)
 def choose(request: Request, session: SessionDep) -> Response:
-    chosen = keys(request, "collection").get("collection", "")
+    chosen = plain.keys(request, "collection")["collection"]
     limit = request.app.state.config.upload_limit
     return render(request, upload_new.build(session, chosen, limit=limit))
 
@@ -57,7 +45,7 @@ def choose(request: Request, session: SessionDep) -> Response:
 @router.post("/uploads", dependencies=MAY_UPLOAD)
 def receive(request: Request, session: SessionDep, viewer: ViewerDep, form: FormDep) -> Response:
     """Keep the files as a draft; a new collection is opened for them first."""
-    files = [(role, *found) for role in ROLES if (found := _file(form, role)) is not None]
+    files = [(role, *found) for role in ROLES if (found := file(form, role)) is not None]
     if not files:
         raise Refusal(
             422,
@@ -66,13 +54,13 @@ def receive(request: Request, session: SessionDep, viewer: ViewerDep, form: Form
             "that holds both.",
         )
     now = dt.datetime.now(dt.UTC)
-    code = _text(form, "collection")
+    code = text(form, "collection")
     if not code:
         code = create_collection(
             session,
-            code=_text(form, "code"),
-            name=_text(form, "name"),
-            owner=_text(form, "owner"),
+            code=text(form, "code"),
+            name=text(form, "name"),
+            owner=text(form, "owner"),
             by=viewer,
             now=now,
         ).code
@@ -84,13 +72,13 @@ def receive(request: Request, session: SessionDep, viewer: ViewerDep, form: Form
 
 @router.api_route("/uploads/{upload:int}", methods=READ, dependencies=MAY_READ)
 def show(request: Request, session: SessionDep, upload: int) -> Response:
-    keys(request)
+    plain.keys(request)
     return render(request, upload_page.build(session, upload))
 
 
 @router.api_route("/uploads/{upload:int}/reading", methods=READ, dependencies=MAY_READ)
 def show_reading(request: Request, session: SessionDep, upload: int) -> Response:
-    keys(request)
+    plain.keys(request)
     return render(request, upload_reading.build(session, upload))
 
 
@@ -119,20 +107,13 @@ def check(session: SessionDep, upload: int) -> Response:
 @router.api_route("/uploads/{upload:int}/problems", methods=READ, dependencies=MAY_READ)
 @router.api_route("/uploads/{upload:int}/problems.{twin}", methods=READ, dependencies=MAY_READ)
 def show_problems(request: Request, session: SessionDep, upload: int, twin: str = "") -> Response:
-    given = keys(request, *(("table",) if twin == "csv" else ()))
-    found = uploads.find(session, upload)
-    if not found.report:
+    if not uploads.find(session, upload).report:
         raise Elsewhere(f"/uploads/{upload}/reading")
     page = upload_problems.build(session, upload)
     if not twin:
+        plain.keys(request)
         return render(request, page)
-    return respond(
-        request,
-        lambda: page,
-        tag_parts=(found.report,),
-        form=asked_form(twin),
-        table=given.get("table", ""),
-    )
+    return plain.show(request, lambda: page, tag_parts=(page,), twin=twin)
 
 
 @router.post("/uploads/{upload:int}/files", dependencies=MAY_UPLOAD)
@@ -140,7 +121,7 @@ def correct_file(
     request: Request, session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep
 ) -> Response:
     """A corrected file in place of one: a new draft, read and checked as the one before."""
-    found = _file(form, "file")
+    found = file(form, "file")
     if found is None:
         raise Refusal(
             422, "Not understood", "No file was chosen. Go back and choose the corrected file."
@@ -148,7 +129,7 @@ def correct_file(
     new = correct_upload(
         session,
         upload_id=upload,
-        file=(_text(form, "role"), *found),
+        file=(text(form, "role"), *found),
         by=viewer,
         now=dt.datetime.now(dt.UTC),
         limit=_limit(request),
@@ -163,10 +144,10 @@ def commit(session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep) -
     edition = commit_upload(
         session,
         upload_id=upload,
-        note=_text(form, "note"),
+        note=text(form, "note"),
         by=viewer,
         now=dt.datetime.now(dt.UTC),
-        replace=_text(form, "replace") == "yes",
+        replace=text(form, "replace") == "yes",
     )
     collection = uploads.find(session, upload).collection
     return redirect(f"/c/{collection}/{edition.number}/contents", status=303)
@@ -176,19 +157,6 @@ def commit(session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep) -
 def discard(session: SessionDep, viewer: ViewerDep, upload: int) -> Response:
     discard_upload(session, upload_id=upload, by=viewer)
     return redirect("/uploads", status=303)
-
-
-def _file(form: FormData, field: str) -> tuple[str, bytes] | None:
-    """Name and content; None where none was chosen: browsers send one without a name."""
-    value = form.get(field)
-    if not isinstance(value, UploadFile) or not value.filename:
-        return None
-    return value.filename, value.file.read()
-
-
-def _text(form: FormData, field: str) -> str:
-    value = form.get(field, "")
-    return value.strip() if isinstance(value, str) else ""
 
 
 def _limit(request: Request) -> int:

@@ -15,7 +15,7 @@ from jinja2 import Environment
 from server.web import templating
 from server.web.build import Build
 from server.web.etag import Bodies, Body, etag, fresh
-from server.web.problem import Problem, Refusal
+from server.web.problem import Problem
 
 FRAME_BLOCKS = ("locator", "notices", "answer", "colophon")  # come along with any block
 VARY = "HX-Request-Type, HX-Target"
@@ -67,21 +67,13 @@ def respond(
     form: str = "html",
     table: str = "",
 ) -> Response:
-    """The page at this address, or its twin in another `form` (csv of one `table`).
+    """The page at this address, or a twin in another `form` that there is (csv of one `table`).
 
     `tag_parts` are all that can change the page beside its address and the build: for a page of an
     edition the records of both it and its collection. A repeat does not call `build`. A csv that
     names no table is redirected to the page's first.
     """
     web = of(request)
-    if form != "html" and form not in web.writers:
-        raise Refusal(
-            404,
-            "No such page",
-            "There is no .{form} of this page; there are {known}.",
-            form=form,
-            known=", ".join(f".{one}" for one in web.writers),
-        )
     asked = asked_block(request) if form == "html" else ""
     place = (request.url.path, request.url.query, form, table, asked)
     tag = etag((*place, *tag_parts, web.build.digest, web.language()))

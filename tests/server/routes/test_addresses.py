@@ -71,3 +71,29 @@ def test_another_database_with_the_same_counts_is_not_taken_for_this_one(
             tags.append([reader.head(place).headers["etag"] for place in PLACES])
     for of_one_place in zip(*tags, strict=True):
         assert len(set(of_one_place)) == 3
+
+
+@pytest.mark.parametrize("place", ["/collections.csv", "/methods.csv", "/c/isle/editions.csv"])
+def test_a_key_may_stand_once(reader: TestClient, place: str) -> None:
+    answer = reader.get(f"{place}?table=checks&table=settings")
+    assert answer.status_code == 400
+    assert "“table” 2 times; it may stand once." in answer.json()["detail"]
+
+
+@pytest.mark.parametrize(
+    "view", ["contents", "trend", "population-year", "comparison", "editions", "1/contents"]
+)
+def test_twins_no_page_has_are_refused_in_words(reader: TestClient, view: str) -> None:
+    for suffix in ("pdf", "html", "json?a"):
+        answer = reader.get(f"/c/isle/{view}.{suffix.replace('?', '%3F')}")
+        assert answer.status_code == 404
+        assert f"There is no .{suffix} of this page; there are .csv" in answer.text
+
+
+@pytest.mark.parametrize("view", ["contents", "trend"])
+def test_a_twin_without_an_edition_leads_to_that_of_the_newest(
+    reader: TestClient, view: str
+) -> None:
+    place = reader.get(f"/c/isle/{view}.json").headers["location"]
+    assert place.startswith(f"/c/isle/1/{view}.json?")
+    assert reader.get(place).status_code == 200

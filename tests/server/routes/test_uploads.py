@@ -292,3 +292,30 @@ def test_what_cannot_be_answered_says_why(
     answer = blank.get(address)
     assert answer.status_code == status
     assert words in answer.text
+
+
+def test_a_text_that_no_database_keeps_is_refused(blank: TestClient) -> None:
+    answer = sent(blank, counts_csv(times=40), name="All\0deaths")
+    assert answer.status_code == 422
+    assert "The text of “name” holds a character that is none." in answer.text
+    place = draft(blank, counts_csv(times=40))
+    assert blank.post(f"{place}/reading", data=AREAS | {"source": "\0"}).status_code == 422
+    assert blank.post(f"{place}/reading", data=AREAS).status_code == 303
+    assert blank.post(f"{place}/commit", data={"note": "\0"}).status_code == 422
+    assert blank.post(f"{place}/commit", data={"note": "x"}).status_code == 303
+    assert blank.post("/c/dk/1/withdraw", data={"note": "\0"}).status_code == 422
+
+
+def test_the_list_of_problems_is_sent_again_once_another_edition_stands(blank: TestClient) -> None:
+    committed(blank, counts_csv(times=40))
+    places = [draft(blank, counts_csv(times=41), collection="dk") for _ in range(2)]
+    for place in places:
+        assert blank.post(f"{place}/reading", data=AREAS).status_code == 303
+    listed = blank.get(f"{places[1]}/problems.json")
+    assert listed.json()["notices"] == []
+    assert blank.post(f"{places[0]}/commit", data={"note": "x"}).status_code == 303
+    again = blank.get(
+        f"{places[1]}/problems.json", headers={"If-None-Match": listed.headers["etag"]}
+    )
+    assert again.status_code == 200
+    assert [told["word"] for told in again.json()["notices"]] == ["Check again"]

@@ -110,12 +110,6 @@ def test_an_unknown_table_is_refused_with_those_there_are(reader: TestClient) ->
     assert answer.json()["detail"] == "This page has no table “third”; it has first, second."
 
 
-def test_a_form_that_no_page_has_is_refused(reader: TestClient) -> None:
-    answer = reader.get("/small.pdf")
-    assert answer.status_code == 404
-    assert "There is no .pdf of this page; there are .csv, .xlsx, .json." in answer.text
-
-
 def test_a_page_that_follows_from_a_form_is_not_kept(reader: TestClient) -> None:
     answer = reader.post("/form", headers={"Sec-Fetch-Site": "same-origin"})
     assert (answer.status_code, answer.headers["cache-control"]) == (422, "private, no-store")
