@@ -154,28 +154,34 @@ def _computed(found: Comparison) -> tuple[Sentence, ...]:
 def _cautions(found: Comparison) -> tuple[Caution, ...]:
     sides = (found.this, found.that)
     both = tables.pair(found)
-    fewest = min(float(side.panel.exposure.sum()) for side in sides)
+    lived = {float(side.panel.exposure.sum()): side.of for side in sides}
+    fewest = min(lived)
     provisional = {side.of.period for side in sides if side.loaded.status == "provisional"}
     modelled = found.settings.open_interval != "one_over_m"
-    told = [
-        basis.provisional(sorted(provisional)),
-        basis.few_person_years(fewest, found.settings),
-        say.regrouped(
-            [tables.named(found, of).whole for of in found.regrouped],
-            _("{count} groups", count=len(found.grid)),
-            found.grid.open_age,
-        )
-        if found.regrouped
-        else None,
-        say.counted_twice(tables.named(found, found.overlap).whole)
-        if found.overlap and not found.same
-        else None,
-        (_("Not compared"), _why_not_parted(found)) if _why_not_parted(found) else None,
-        basis.law(found.settings, found.grid.open_age) if modelled else None,
-        ages_say.arithmetic() if both.this != both.that else None,
-        *basis.reading(found.settings),
-    ]
-    return tuple(Caution(word, text) for word, text in (pair for pair in told if pair))
+    return frames.cautions(
+        beside=[
+            basis.provisional(sorted(provisional)),
+            basis.few_person_years(
+                fewest, found.settings, tables.named(found, lived[fewest]).whole
+            ),
+            basis.law(found.settings, found.grid.open_age) if modelled else None,
+        ],
+        below=[
+            say.regrouped(
+                [tables.named(found, of).whole for of in found.regrouped],
+                _("{count} groups", count=len(found.grid)),
+                found.grid.open_age,
+            )
+            if found.regrouped
+            else None,
+            say.counted_twice(tables.named(found, found.overlap).whole)
+            if found.overlap and not found.same
+            else None,
+            (_("Not compared"), _why_not_parted(found)) if _why_not_parted(found) else None,
+            ages_say.arithmetic() if both.this != both.that else None,
+            *basis.reading(found.settings),
+        ],
+    )
 
 
 def _why_not_parted(found: Comparison) -> str:

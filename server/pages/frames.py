@@ -1,11 +1,14 @@
 """What stands round a page pinned to an edition: locator, notices, colophon, twins."""
 
+from collections.abc import Iterable
+
 from engine import settings as named
 from engine.settings import Settings
-from server.pages.page import Frame, Notice
+from server.pages.page import Caution, Frame, Notice
 from server.results.questions import Question, address
 from server.results.revision import Moved
 from server.sentences import standing
+from server.sentences.basis import Told
 from server.sentences.dates import day
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
@@ -91,6 +94,12 @@ def notices(
             )
         )
     return tuple(out)
+
+
+def cautions(*, beside: Iterable[Told], below: Iterable[Told]) -> tuple[Caution, ...]:
+    """What there is to warn of: with the answer, or after the figures."""
+    first = [Caution(*told, beside=True) for told in beside if told]
+    return (*first, *(Caution(*told) for told in below if told))
 
 
 def twins(heading: Heading, question: Question) -> dict[str, str]:

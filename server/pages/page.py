@@ -22,6 +22,7 @@ class Notice:
 class Caution:
     word: str
     text: str
+    beside: bool = False  # told with the answer, since it is about the very figures there
 
 
 @dataclass(frozen=True, slots=True)

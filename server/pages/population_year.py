@@ -156,18 +156,21 @@ def _cautions(found: Findings) -> tuple[Caution, ...]:
     provisional = [of.period] if found.loaded.status == "provisional" else []
     if before and before.loaded.status == "provisional":
         provisional.append(before.of.period)
-    told = [
-        basis.provisional(provisional),
-        basis.few_person_years(float(panel.exposure.sum()), found.settings),
-        basis.no_deaths(empty),
-        basis.joined(joined),
-        basis.regrouped(before.of.period)
-        if before and before.loaded.panel.grid != panel.grid
-        else None,
-        basis.law(found.settings, panel.grid.open_age) if found.chain.modelled else None,
-        *basis.reading(found.settings),
-    ]
-    return tuple(Caution(word, text) for word, text in (pair for pair in told if pair))
+    return frames.cautions(
+        beside=[
+            basis.provisional(provisional),
+            basis.few_person_years(float(panel.exposure.sum()), found.settings),
+            basis.law(found.settings, panel.grid.open_age) if found.chain.modelled else None,
+        ],
+        below=[
+            basis.no_deaths(empty),
+            basis.joined(joined),
+            basis.regrouped(before.of.period)
+            if before and before.loaded.panel.grid != panel.grid
+            else None,
+            *basis.reading(found.settings),
+        ],
+    )
 
 
 def _rows(found: Findings) -> str:

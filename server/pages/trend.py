@@ -133,9 +133,10 @@ def _cautions(found: Series) -> tuple[Caution, ...]:
         for line in range(len(found.lines))
         if tables.widest(found.estimate, line) > abs(float(found.change.value[line]))
     ]
-    told = [basis.provisional(sorted(provisional)), say.small(small), *_missing(found)]
-    told += basis.reading(found.settings)
-    return tuple(Caution(word, text) for word, text in (one for one in told if one))
+    return frames.cautions(
+        beside=[basis.provisional(sorted(provisional)), say.small(small), *_missing(found)],
+        below=basis.reading(found.settings),
+    )
 
 
 def _missing(found: Series) -> list[basis.Told]:

@@ -52,14 +52,20 @@ def provisional(periods: Sequence[str]) -> Told:
     )
 
 
-def few_person_years(lived: float, settings: Settings) -> Told:
-    """A flag, below the settings' bound, on figures that chance moves a good deal."""
+def few_person_years(lived: float, settings: Settings, who: str = "") -> Told:
+    """A flag, below the settings' bound, on figures that chance moves a good deal; `who` they are
+    of, where a page has several."""
     if not lived < settings.few_exposure:
         return None
+    rest = (
+        _("The figures of {who} rest on {years} person-years.", who=who, years=whole(lived))
+        if who
+        else _("These figures rest on {years} person-years.", years=whole(lived))
+    )
     return _("Few people"), _(
-        "These figures rest on {years} person-years. Below {bound} they jump from year to year by"
-        " chance; read the intervals, not the figures alone.",
-        years=whole(lived),
+        "{rest} Below {bound} they jump from year to year by chance; read the intervals, not the"
+        " figures alone.",
+        rest=rest,
         bound=whole(settings.few_exposure),
     )
 

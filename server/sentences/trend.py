@@ -206,4 +206,5 @@ def small(lines: list[str]) -> tuple[str, str] | None:
 
 
 def missing(lines: list[str], why: str) -> tuple[str, str]:
-    return _("Not drawn"), _("{lines}: {why}", lines=names.listed(lines, most=8), why=why)
+    who = names.first_capital(names.listed(lines, most=8))
+    return _("Not drawn"), _("{lines}: {why}", lines=who, why=why)
