@@ -10,7 +10,7 @@ from server.exports.flat import Plain, flat
 from server.exports.table import Table
 
 MEDIA_TYPE = "text/csv; charset=utf-8"
-_FORMULA = ("=", "+", "-", "@", "\t", "\r")
+_FORMULA = ("=", "+", "-", "@", "\t", "\r", "\n")
 
 
 def write(table: Table) -> bytes:

@@ -56,11 +56,11 @@ def all_rows(table: Table) -> tuple[Row, ...]:
 
 
 def plain(cell: Cell, table: Table, column: Column) -> Plain:
-    """A number as it is, in Python's own type; None for a gap."""
+    """A number as it is, in Python's own type; None for a gap, or where a sum has no number."""
     if isinstance(cell, Gap):
         return None
     if isinstance(cell, str):
-        return str(cell)
+        return cell or (None if column.decimals is not None else "")
     if not math.isfinite(cell):
         raise ValueError(
             f"table {table.key}, column {column.key}: found {cell!r}; expected a number or a Gap "

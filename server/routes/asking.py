@@ -16,7 +16,6 @@ from server.store.connect import Session
 from server.store.heading import Heading, heading
 from server.web.render import respond
 
-READ = ["GET", "HEAD"]
 TWINS = ("csv", "xlsx", "json")
 
 Asks = TypeVar("Asks", bound=Question)

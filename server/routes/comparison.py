@@ -5,7 +5,8 @@ from fastapi import APIRouter, Request, Response
 from server.accounts.viewer import Right
 from server.pages import comparison
 from server.results.questions import ComparisonQuestion
-from server.routes.asking import READ, SessionDep, answer, ask, needs
+from server.routes.asking import SessionDep, answer, ask, needs
+from server.web.render import READ
 
 router = APIRouter(dependencies=[needs(Right.READ)])
 

@@ -11,11 +11,11 @@ from server.pages import collections as collections_page
 from server.pages import contents as contents_page
 from server.pages import editions as editions_page
 from server.results.contents import ContentsQuestion
-from server.routes.asking import READ, SessionDep, ViewerDep, answer, ask, code, needs
+from server.routes.asking import SessionDep, ViewerDep, answer, ask, code, needs
 from server.routes.forms import FormDep, text
 from server.routes.plain import show
 from server.store import collections
-from server.web.render import redirect
+from server.web.render import READ, redirect
 
 router = APIRouter()
 VIEW = ContentsQuestion.view

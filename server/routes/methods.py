@@ -4,8 +4,9 @@ from fastapi import APIRouter, Request, Response
 
 from server.accounts.viewer import Right
 from server.pages import methods, words
-from server.routes.asking import READ, needs
+from server.routes.asking import needs
 from server.routes.plain import show
+from server.web.render import READ
 
 router = APIRouter(dependencies=[needs(Right.READ)])
 

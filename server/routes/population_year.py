@@ -5,7 +5,8 @@ from fastapi import APIRouter, Request, Response
 from server.accounts.viewer import Right
 from server.pages import population_year
 from server.results.questions import PopulationYearQuestion
-from server.routes.asking import READ, SessionDep, answer, ask, needs
+from server.routes.asking import SessionDep, answer, ask, needs
+from server.web.render import READ
 
 router = APIRouter(dependencies=[needs(Right.READ)])
 

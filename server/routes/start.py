@@ -7,11 +7,11 @@ from fastapi import APIRouter, Request, Response
 from server.accounts.viewer import Right
 from server.intake import templates
 from server.pages import start
-from server.routes.asking import READ, NoSuchPage, SessionDep, needs
+from server.routes.asking import NoSuchPage, SessionDep, needs
 from server.routes.plain import keys
 from server.sentences.text import _
 from server.store import collections
-from server.web.render import redirect, respond
+from server.web.render import READ, redirect, respond
 
 router = APIRouter()
 

@@ -6,10 +6,11 @@ from server.accounts.viewer import Right
 from server.pages import trend
 from server.results.loading import NotInEdition, holdings
 from server.results.questions import TrendQuestion
-from server.routes.asking import READ, SessionDep, answer, ask, needs
+from server.routes.asking import SessionDep, answer, ask, needs
 from server.sentences.text import _
 from server.store.connect import Session
 from server.store.heading import Heading
+from server.web.render import READ
 
 router = APIRouter(dependencies=[needs(Right.READ)])
 

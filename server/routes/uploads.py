@@ -17,12 +17,12 @@ from server.pages import upload as upload_page
 from server.pages import upload_new, upload_problems, upload_reading
 from server.pages import uploads as uploads_page
 from server.routes import plain
-from server.routes.asking import READ, Elsewhere, SessionDep, ViewerDep, needs
+from server.routes.asking import Elsewhere, SessionDep, ViewerDep, needs
 from server.routes.forms import FormDep, file, text
 from server.routes.reading_form import basis, mappings
 from server.store import uploads
 from server.web.problem import Refusal
-from server.web.render import redirect, render
+from server.web.render import READ, redirect, render
 
 router = APIRouter()
 MAY_READ = [needs(Right.READ)]

@@ -20,6 +20,7 @@ TAKE_PART = (
     "fastapi",
     "starlette",
     "jinja2",
+    "markupsafe",
     "orjson",
     "openpyxl",
 )

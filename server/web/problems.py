@@ -1,14 +1,16 @@
 """How a problem is told: as a page, as a notice beside what htmx left in place, or as JSON."""
 
+from urllib.parse import quote
+
 import orjson
 from fastapi import Request, Response
 
+from server.web.guard import SAFE
 from server.web.problem import Problem
 from server.web.render import PASSING, VARY, of, render
 from server.web.templating import block, context
 
 MEDIA_TYPE = "application/problem+json"
-SAFE = ("GET", "HEAD", "OPTIONS")
 _MACHINE = (".json", ".csv", ".xlsx")
 
 
@@ -53,8 +55,9 @@ def request_id(request: Request) -> str:
 
 
 def asked(request: Request) -> str:
-    """The address as it came."""
-    return f"{request.url.path}?{request.url.query}".rstrip("?")
+    """The address as it came, which is what may stand in a link."""
+    path = quote(request.scope.get("raw_path") or request.url.path, safe="/%:;,+~!*'()@=&$")
+    return f"{path}?{request.url.query}".rstrip("?")
 
 
 def _alert(request: Request, problem: Problem) -> Response:

@@ -54,11 +54,6 @@ def environment(
     return made
 
 
-def block_names(template: Template) -> frozenset[str]:
-    """The blocks a template defines itself, without those it takes over."""
-    return frozenset(template.blocks)
-
-
 def context(made: Environment, template: Template, values: Mapping[str, Any]) -> Context:
     """A context in which blocks of the template, and of its frame, can be rendered alone."""
     new = template.new_context(dict(values))

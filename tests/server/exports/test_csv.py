@@ -39,7 +39,7 @@ def test_a_number_comes_back_to_the_last_bit(value: float) -> None:
 def test_no_text_begins_as_a_formula_and_every_other_comes_back(text: str) -> None:
     rows = list(reader.reader(io.StringIO(csv.write(one_column(text)).decode(), newline="")))
     came = rows[1][0] if len(rows) > 1 and rows[1] else ""
-    assert not came.startswith(("=", "+", "-", "@", "\t", "\r"))
+    assert not came.startswith(("=", "+", "-", "@", "\t", "\r", "\n"))
     assert came in (text, f"'{text}")
 
 

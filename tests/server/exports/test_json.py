@@ -5,6 +5,7 @@ from dataclasses import replace
 import orjson
 
 from server.exports import json
+from server.exports.table import Row
 from tests.server.exports.tables import YEARS, a_twin
 
 
@@ -25,6 +26,12 @@ def test_what_the_file_holds() -> None:
     assert figures["rows"][1]["provisional"] is True
     assert figures["rows"][2]["change"] == {"missing": "nil"}
     assert figures["total"] == {"year": "sum", "area": "", "e0": 82.5, "change": 0.375}
+
+
+def test_a_sum_without_a_number_is_null_and_no_text() -> None:
+    blank = replace(YEARS, total=Row(("sum", "", "", 0.375)))
+    total = orjson.loads(json.write(a_twin(blank)))["figures"]["years"]["total"]
+    assert total == {"year": "sum", "area": "", "e0": None, "change": 0.375}
 
 
 def test_notices_and_new_names_leave_the_bytes_of_the_figures_as_they_are() -> None:

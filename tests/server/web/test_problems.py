@@ -34,6 +34,11 @@ def test_a_program_gets_problem_json(reader: TestClient, form: str) -> None:
     }
 
 
+def test_an_address_is_told_as_it_may_stand_in_a_link(reader: TestClient) -> None:
+    place = "/nothing%20%C3%BC%3F%25/%22.json?of=%3Ce0%3E"
+    assert reader.get(place).json()["instance"] == place
+
+
 def test_htmx_gets_a_notice_and_the_page_stays(reader: TestClient) -> None:
     answer = reader.get("/missing", headers={"HX-Request-Type": "partial", "HX-Target": "div#x"})
     assert answer.status_code == 404
