@@ -21,7 +21,7 @@ def commands() -> list[str]:
 def test_there_are_two_commands() -> None:
     run, test = commands()
     assert run.endswith("ebbline demo")
-    assert test.endswith("pytest")
+    assert test.endswith("pytest -n auto")
 
 
 def test_the_bare_machine_runs_the_same_test_command() -> None:
