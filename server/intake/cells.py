@@ -1,5 +1,6 @@
 """The rows of a sheet as numbers: which area, sex, year and age each one is of."""
 
+from collections import Counter
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import TypeVar
@@ -71,7 +72,8 @@ def codes_of(sheet: Sheet) -> list[str]:
         return labels.read(lambda text: text if is_code(text) else "", "")
     if labels := sheet.labels.get("area_name"):
         made = [code_of(text) for text in labels.texts]
-        return [code if made.count(code) == 1 else "" for code in made] + [""]
+        times = Counter(made)
+        return [code if times[code] == 1 else "" for code in made] + [""]
     return [only_code(sheet.mapping)]
 
 

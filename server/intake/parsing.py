@@ -30,7 +30,7 @@ from server.intake.schedules import MEASURES, Block, blocks, ordered
 from server.intake.sheets import Sheet, load
 from server.store.records import Area, Key, Vector
 
-READER = "reader-1"  # changes whenever the same bytes and mapping would give other schedules
+READER = "reader-2"  # changes whenever the same bytes and mapping would give other schedules
 
 
 @dataclass(frozen=True, slots=True)
@@ -126,13 +126,13 @@ def _areas(
     sheets: Sequence[Sheet], handed: Sequence[Handed]
 ) -> tuple[tuple[str, ...], tuple[Area, ...], list[Problem]]:
     """Codes in order, the areas, and names or wholes that disagree."""
-    names: dict[str, list[str]] = defaultdict(list)
+    names: dict[str, dict[str, None]] = defaultdict(dict)  # each once, in the order found
     found: set[str] = set()
     for sheet in sheets:
         codes = codes_of(sheet)
         found |= set(codes) - {""}
         for code, given in names_of(sheet, codes).items():
-            names[code] += [name for name in given if name not in names[code]]
+            names[code].update(dict.fromkeys(given))
     whole = _whole(handed)
     found |= {whole} - {""}
     delivered = {code for file in handed for code in file.mapping.delivered}

@@ -87,18 +87,24 @@ def load(file: Layout, mapping: Mapping, role: str) -> Sheet:
 
 
 def _table(file: Layout, place: dict[str, int], texts: set[int]) -> pd.DataFrame:
-    """Texts as categories; numbers as numbers if all of them are, else as categories too.
+    """Texts as they are written; numbers as numbers if all of them are, else as texts too.
 
-    The reader of tables takes a column of nothing but "True" for ones, so the first row is asked.
+    The reader of tables takes a column of nothing but "True" for ones, so the first row is asked;
+    as categories it would take the codes "01" and "1" for the same number.
     """
     first = file.first_rows(1)[0]
     numbers = set(place.values()) - texts
-    words = {column for column in numbers if first[column].strip().casefold() in ("true", "false")}
-    types = dict.fromkeys(texts | words, "category")
+    words = {column for column in numbers if _may_be_word(first, column)}
     try:
+        types = dict.fromkeys(texts | words, "object")
         return _read(file, types | dict.fromkeys(numbers - words, "float64"))
     except ValueError:
-        return _read(file, dict.fromkeys(texts | numbers, "category"))
+        return _read(file, dict.fromkeys(texts | numbers, "object"))
+
+
+def _may_be_word(first: tuple[str, ...], column: int) -> bool:
+    """Of a first row so long that it was cut short, nothing is known."""
+    return column >= len(first) or first[column].strip().casefold() in ("true", "false")
 
 
 def _read(file: Layout, types: dict[int, str]) -> pd.DataFrame:
@@ -122,11 +128,11 @@ def _read(file: Layout, types: dict[int, str]) -> pd.DataFrame:
 
 def _labels(column: "pd.Series[object]") -> Labels:
     """Codes into the distinct texts without the blanks around them."""
-    written = [str(text) for text in column.cat.categories]
+    which, written = pd.factorize(column)
     distinct = sorted({text.strip() for text in written} - {""})
     code = {text: place for place, text in enumerate(distinct)}
     codes = np.array([*(code.get(text.strip(), -1) for text in written), -1], np.int32)
-    return Labels(codes[column.cat.codes.to_numpy()], tuple(distinct))
+    return Labels(codes[which], tuple(distinct))
 
 
 def _numbers(column: "pd.Series[object]") -> Numbers:

@@ -12,6 +12,7 @@ from server.actions import commit_upload as committing
 from server.actions import rebuild_editions as rebuilding
 from server.actions.commit_upload import commit_upload
 from server.actions.rebuild_editions import Rebuilt, rebuild_editions
+from server.intake.parsing import READER
 from server.store.errors import Missing
 from tests.factories import (
     BASIS,
@@ -109,7 +110,7 @@ def test_a_reader_that_reads_otherwise_is_noticed(
 def test_a_newer_reader_does_not_pretend(session: Session, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(rebuilding, "READER", "reader-9")
     report = rebuilt(session)
-    assert report[0].reason.format(**report[0].values).startswith("It was read by reader-1")
+    assert report[0].reason.format(**report[0].values).startswith(f"It was read by {READER}")
     assert report[0].reread == ""
 
 

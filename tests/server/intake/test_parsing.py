@@ -245,6 +245,21 @@ def test_names_beside_codes_are_kept() -> None:
     )
 
 
+def test_codes_that_look_like_numbers_stay_as_written() -> None:
+    """Leading zeros are part of a code; nothing is merged, and nothing moves to another code."""
+    codes = ("01", "1", "1.0", "1e3", "1000")
+    parsed = parse([counts(rows(codes))])
+    assert tuple(area.code for area in parsed.areas) == tuple(sorted(codes))
+    assert parsed.problems == ()
+    assert {key.area for key in parsed.cells} == set(codes)
+
+
+def test_a_first_row_beyond_what_is_shown_of_it_is_read() -> None:
+    table = [row | {"a": "x" * 150_000 if place == 0 else ""} for place, row in enumerate(SOUND)]
+    content = csv(table, ("a", *SOUND[0]))
+    assert parse([counts(content)]).cells.keys() == parse([counts(SOUND)]).cells.keys()
+
+
 def test_one_area_for_the_whole_file() -> None:
     table = where(SOUND, area="north")
     parsed = parse([counts(table, area="", only_area_name="North Shore")])
