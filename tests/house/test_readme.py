@@ -1,8 +1,13 @@
 """What README promises is what runs."""
 
+import os
 import re
+import shlex
+import subprocess
+import sys
 import tomllib
 from itertools import chain
+from pathlib import Path
 
 import pytest
 
@@ -38,6 +43,24 @@ def test_every_dependency_is_pinned_without_an_address() -> None:
     assert all(re.fullmatch(r"[\w.-]+==[\w.]+", line) for line in lines)
     names = {re.split(r"[\[<>=~ ]", one)[0].lower() for one in asked}
     assert names - pinned == set()
+
+
+def test_the_example_with_real_counts_makes_an_edition(tmp_path: Path) -> None:
+    example = re.search(r"```\n\.venv/bin/ebbline (.+?)```", README, re.DOTALL)
+    assert example is not None
+    words = shlex.split(example[1].replace("\\\n", " "))
+    said = [
+        subprocess.run(
+            [sys.executable, "-m", "server", *arguments],
+            cwd=ROOT,
+            env={**os.environ, "EBBLINE_DATA": str(tmp_path)},
+            capture_output=True,
+            text=True,
+        )
+        for arguments in (["database"], words)
+    ]
+    assert [one.returncode for one in said] == [0, 0], said[-1].stderr
+    assert "edition 1" in said[-1].stdout.lower()
 
 
 def test_pictures_and_links_of_the_documents_exist() -> None:
