@@ -10,7 +10,10 @@ from server.sentences.text import _
 
 
 def carried(ages: str, part: float, difference: float, unit_decimals: int = 1) -> Sentence:
-    """Which ages hold most of a difference in life expectancy."""
+    """Which ages hold most of a difference in life expectancy; nothing where others work so much
+    against it that their part is more than the whole."""
+    if abs(part) > abs(difference):
+        return ()
     return phrase(
         _("Ages {ages} carry {part} of the {whole}."),
         ages=ages,
@@ -36,7 +39,7 @@ def survivors(of: Answer, share: float, from_age: int) -> str:
 
 def by_age(of: Answer, ages: str, part: float) -> str:
     """What the picture of contributions to life expectancy shows; `ages` hold `part` of it."""
-    if not of.clear:
+    if not of.clear or abs(part) > abs(float(of.difference.value)):
         return _("What each age adds to the difference in life expectancy")
     return _(
         "Ages {ages} make most of the difference: {part} of {whole}",

@@ -44,6 +44,13 @@ def test_an_unclear_difference_is_owed_to_no_ages() -> None:
     assert words(say.carried("35 to 59", 0.93, 1.7)) == "Ages 35 to 59 carry 0.9 of the 1.7 years."
 
 
+def test_no_ages_hold_more_than_the_whole() -> None:
+    loss = asked(estimate(-1.7, -2.4, -1.1))
+    assert "What each age adds" in say.by_age(loss, "35 to 59", -1.8)
+    assert say.by_age(loss, "35 to 59", -1.6).startswith("Ages 35 to 59 make most")
+    assert say.carried("35 to 59", -1.8, -1.7) == ()
+
+
 def test_a_remainder_gets_its_row_only_beyond_rounding() -> None:
     assert say.remainder(1e-12, 0.5) == ""
     assert say.remainder(1e-6, 0.5) != ""
