@@ -26,9 +26,10 @@ FAMILY = (
         label="Rise of death rates with age",
         unit=Unit("percent_per_year", "% per year of age", 100, 1),
         definition=(
-            "By how many per cent death rates rise from one year of age to the next, on average"
-            " over the span of ages that the settings name (life-table ageing rate). It compares"
-            " people of different ages in one year and says nothing of how fast a person ages."
+            "How fast death rates rise with age, on average over the span of ages that the settings"
+            " name (life-table ageing rate), growth reckoned without steps: at 10 % a year of age"
+            " they double in 6.9. It compares people of different ages in one year and says nothing"
+            " of how fast a person ages."
         ),
         formula=(
             "the slope b of log m(x) = a + b x, x the middle of each closed age group inside the"

@@ -27,10 +27,11 @@ def at_age(age: int) -> Indicator:
         label="Life expectancy at birth" if age == 0 else f"Life expectancy at {age}",
         unit=YEARS,
         definition=(
-            "The years that people "
-            + ("born" if age == 0 else f"who have reached {age}")
-            + " would go on to live on average if the death rates of the year held for the rest of"
-            " their lives."
+            "The years that a newborn child would live on average if the death rates of the year"
+            " held for all its life."
+            if age == 0
+            else f"The years that people who have reached {age} would go on to live on average if"
+            " the death rates of the year held for the rest of their lives."
         ),
         formula=f"e({age}) = T({age}) / l({age}), T({age}) the sum of L(x) from {age} on",
         source="Preston, Heuveline & Guillot (2001), Demography, chapter 3",

@@ -125,8 +125,9 @@ def rise(found: Findings, source: str) -> Chart | None:
         key="rise",
         finding=say.rise(found.estimates, found.settings.ageing_span),
         unit=_(
-            "Rise of death rates between neighbouring five-year age groups (a hundred times the"
-            " change of the logarithm), with {level} % intervals; drawn where both have 100 deaths",
+            "Rise of death rates from one five-year age group to the next, at the age that parts"
+            " them (a hundred times the change of the logarithm), with {level} % intervals; drawn"
+            " where both have 100 deaths",
             level=round(100 * found.settings.level),
         ),
         source=source,

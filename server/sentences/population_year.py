@@ -105,19 +105,20 @@ def meanings(estimates: Estimates) -> Sentence:
     """The median, e-dagger and H in plain words; those undefined are left out."""
     said = []
     if known(estimates, "median"):
-        said.append(_("Half would live past {age}.", age=_value(estimates, "median")))
+        said.append(_("Half would live past age {age}.", age=_value(estimates, "median")))
     if known(estimates, "edagger"):
         said.append(
             _(
-                "A death at these rates cost {amount} of further life on average.",
+                "A death at these rates costs {amount} of further life on average.",
                 amount=years(float(estimates["edagger"].value)),
             )
         )
     if known(estimates, "H"):
         said.append(
             _(
-                "Set against life expectancy that is an unevenness (H) of {value}: 0 would mean"
-                " that all reach the same age, 1 that the risk of dying is the same at every age.",
+                "Set against life expectancy that is an unevenness of length of life (H) of"
+                " {value}: at 0 all would reach the same age, at 1 the risk of dying would be the"
+                " same at every age.",
                 value=_value(estimates, "H"),
             )
         )
@@ -156,14 +157,11 @@ def about_table(open_age: int, *, modelled: bool) -> Sentence:
     """What the life table holds and what it stands behind."""
     text = (
         _(
-            "Ages from 0 to {age} and over, the highest from a fitted law; rows in fives. It is the"
-            " table behind the pictures above."
+            "Ages from 0 to {age} and over, the highest from a fitted law: the table behind the"
+            " pictures above."
         )
         if modelled
-        else _(
-            "Ages from 0 to {age} and over, rows in fives. It is the table behind the pictures"
-            " above."
-        )
+        else _("Ages from 0 to {age} and over: the table behind the pictures above.")
     )
     return phrase(text, age=str(open_age))
 
@@ -181,23 +179,23 @@ def survivors(sex: str, reach: Mapping[int, float], estimates: Estimates) -> str
     """`reach`: age to share of births that reach it."""
     who = names.sex(sex)
     parts = [
-        _("{count} would reach {age}", count=whole(100 * share), age=age)
+        _("{count} would reach age {age}", count=whole(100 * share), age=age)
         for age, share in reach.items()
     ]
     if known(estimates, "median"):
-        parts = [*parts[:1], _("half would live past {age}", age=_value(estimates, "median"))]
+        parts = [*parts[:1], _("half would live past age {age}", age=_value(estimates, "median"))]
     return _("Of a hundred {who}, {parts}", who=who, parts=names.listed(parts))
 
 
 def deaths(estimates: Estimates) -> str:
     if known(estimates, "median") and known(estimates, "mode"):
         return _(
-            "Half of the deaths fall after {median}; the most common age at death is {mode}",
+            "Half of the deaths fall after age {median}; the most common age at death is {mode}",
             median=_value(estimates, "median"),
             mode=_value(estimates, "mode"),
         )
     if known(estimates, "median"):
-        return _("Half of the deaths fall after {median}", median=_value(estimates, "median"))
+        return _("Half of the deaths fall after age {median}", median=_value(estimates, "median"))
     return _("Deaths by age, as far as the table goes")
 
 
@@ -214,13 +212,20 @@ def rates(lowest: str, empty: int, groups: int, estimates: Estimates, span: tupl
         if empty
         else _("Death rates were lowest at ages {lowest}", lowest=lowest)
     )
-    if not known(estimates, "ageing_rate") or estimates["ageing_rate"].value <= 0:
-        return first
+    slope = estimates["ageing_rate"]
+    if not known(estimates, "ageing_rate") or not slope.low > 0:
+        return first  # where they may as well not rise, no time of doubling is given
+    twice, short, long = (
+        number(math.log(2) / float(part), 1) for part in (slope.value, slope.high, slope.low)
+    )
     return _(
-        "{first}; from {start} on death rates doubled every {years} years of age",
+        "{first}; from age {start} death rates doubled every {years} years of age ({short} to"
+        " {long})",
         first=first,
         start=span[0],
-        years=number(math.log(2) / float(estimates["ageing_rate"].value), 1),
+        years=twice,
+        short=short,
+        long=long,
     )
 
 
@@ -232,13 +237,13 @@ def rise(estimates: Estimates, span: tuple[int, int]) -> str:
     value = f"{shown(slope, unit)}\N{NO-BREAK SPACE}%"
     if not has_interval(slope):
         return _(
-            "From {start} to {end} death rates rise by {value} per year of age",
+            "From {start} to {end} death rates rise at {value} per year of age",
             start=span[0],
             end=span[1],
             value=value,
         )
     return _(
-        "From {start} to {end} death rates rise by {value} per year of age ({interval})",
+        "From {start} to {end} death rates rise at {value} per year of age ({interval})",
         start=span[0],
         end=span[1],
         value=value,
@@ -249,7 +254,8 @@ def rise(estimates: Estimates, span: tuple[int, int]) -> str:
 def gain(ages: str, share: float) -> str:
     """`share` of the gain from lower death rates at all ages that lies in `ages`."""
     return _(
-        "Lower death rates would add most at ages {ages}: {share} of the possible gain lies there",
+        "Lower death rates would add most at ages {ages}: {share} of what 1 % lower rates at all"
+        " ages would add",
         ages=ages,
         share=f"{whole(100 * share)}\N{NO-BREAK SPACE}%",
     )

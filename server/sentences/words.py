@@ -162,13 +162,16 @@ def reading() -> tuple[tuple[str, str], ...]:
         (
             _("what lower death rates at each age would add"),
             _(
-                "How much longer life would be in the table if the death rate at one age were one "
+                "How much longer life would be on average if the death rate at one age were one "
                 "per cent lower and all others stayed."
             ),
         ),
         (
             _("rise of death rates with age"),
-            _("By how many per cent death rates grow from one year of age to the next."),
+            _(
+                "How fast death rates grow with age, in per cent a year of age, growth reckoned "
+                "without steps: at 10 % they double in 6.9 years of age."
+            ),
         ),
         (
             _("joined with its neighbour"),

@@ -65,8 +65,8 @@ def test_sentence_table_and_picture_agree_after_rounding(isle: Session, area: st
     cells = printed(built.table("figures")).rows[0].cells
     assert f"could expect {cells[1].text} years of life ({cells[1].under})" in words(built)
     shown = {key: number(row(built, key).cells[1], find(key).unit.decimals) for key in USUAL}  # type: ignore[arg-type]
-    assert f"Half would live past {shown['median']}." in words(built)
-    assert f"cost {shown['edagger']} years" in words(built)
+    assert f"Half would live past age {shown['median']}." in words(built)
+    assert f"costs {shown['edagger']} years" in words(built)
     assert f"(H) of {shown['H']}" in words(built)
     deaths = built.chart("deaths")
     assert [mark.label for mark in deaths.marks] == [

@@ -88,11 +88,12 @@ def test_the_change_claims_no_more_than_its_interval_bears_out(change: Estimate)
 
 def test_what_h_and_e_dagger_mean_is_said_in_plain_words() -> None:
     assert words(say.meanings(KNOWN)) == (
-        "Half would live past 84.4. A death at these rates cost 9.7 years of further life on"
-        " average. Set against life expectancy that is an unevenness (H) of 0.119: 0 would mean"
-        " that all reach the same age, 1 that the risk of dying is the same at every age."
+        "Half would live past age 84.4. A death at these rates costs 9.7 years of further life on"
+        " average. Set against life expectancy that is an unevenness of length of life (H) of"
+        " 0.119: at 0 all would reach the same age, at 1 the risk of dying would be the same at"
+        " every age."
     )
-    assert words(say.meanings(CUT)) == "Half would live past 84.4."
+    assert words(say.meanings(CUT)) == "Half would live past age 84.4."
 
 
 def test_what_a_low_open_age_costs_is_said_with_a_way_out() -> None:
@@ -109,21 +110,22 @@ def test_what_a_low_open_age_costs_is_said_with_a_way_out() -> None:
 def test_findings_carry_their_numbers() -> None:
     reach = {65: 0.905, 85: 0.4789}
     assert say.survivors("f", reach, KNOWN) == (
-        "Of a hundred women, 90 would reach 65 and half would live past 84.4"
+        "Of a hundred women, 90 would reach age 65 and half would live past age 84.4"
     )
     assert say.survivors("m", reach, {"median": MISSING}) == (
-        "Of a hundred men, 90 would reach 65 and 48 would reach 85"
+        "Of a hundred men, 90 would reach age 65 and 48 would reach age 85"
     )
     assert say.deaths(KNOWN).endswith("the most common age at death is 88.9")
-    assert say.deaths(CUT) == "Half of the deaths fall after 84.4"
+    assert say.deaths(CUT) == "Half of the deaths fall after age 84.4"
     assert say.rates("5–9", 0, 21, KNOWN, (40, 84)) == (
-        "Death rates were lowest at ages 5–9; from 40 on death rates doubled every 6.7 years of age"
+        "Death rates were lowest at ages 5–9; from age 40 death rates doubled every 6.7 years of"
+        " age (6.6 to 6.8)"
     )
     assert say.rates("5–9", 2, 21, {"ageing_rate": MISSING}, (40, 84)) == (
         "In 2 of 21 age groups nobody died"
     )
     assert say.rise(KNOWN, (40, 84)).replace("\N{NO-BREAK SPACE}", " ") == (
-        "From 40 to 84 death rates rise by 10.4 % per year of age (10.2 to 10.5)"
+        "From 40 to 84 death rates rise at 10.4 % per year of age (10.2 to 10.5)"
     )
     assert "70 to 94: 57" in say.gain("70 to 94", 0.571)
 
