@@ -41,6 +41,8 @@ def test_only_closed_groups_wholly_inside_the_span_count() -> None:
     assert grid.labels[within(grid, (40, 84))] == ("42–49", "50–59", "60–69", "70–79")
     assert grid.labels[within(grid, (42, 200))][-1] == "80–89"
     assert grid.labels[within(grid, (200, 300))] == ()
+    five = GRIDS["abridged"].labels[within(GRIDS["abridged"], (40, 84))]
+    assert (five[0], five[-1]) == ("40–44", "80–84")  # both ends of the span are in it
 
 
 def test_no_slope_from_two_groups_or_from_deaths_in_one() -> None:
@@ -86,6 +88,17 @@ def test_k_only_between_groups_of_the_width() -> None:
     got = rises(Panel.of(grid, np.full(10, 500.0), np.full(10, 1e4), sex="f"))
     # 30–31 and 32–34 are summed to 30–34; 10–19 has no neighbour of its width, nor the open group
     np.testing.assert_array_equal(got.at, [5, 25, 30, 35, 40])
+
+
+@pytest.mark.parametrize("few", [1, 2])
+def test_k_only_where_both_groups_have_the_deaths(few: int) -> None:
+    deaths = np.full(5, 100.0)
+    deaths[few] = 99
+    got = rises(Panel.of(AgeGrid((0, 5, 10, 15, 20)), deaths, np.full(5, 1e4), sex="f"))
+    np.testing.assert_array_equal(got.at, [5, 10, 15])
+    touched = [few in (pair, pair + 1) for pair in range(3)]
+    np.testing.assert_array_equal(np.isnan(got.value), touched)
+    np.testing.assert_array_equal(np.isnan(got.low), touched)
 
 
 def test_k_at_another_level_is_narrower() -> None:

@@ -113,6 +113,17 @@ def test_the_same_deaths_on_both_sides_leave_nothing_to_chance() -> None:
     assert got.reason == Reason.NO_SAMPLING_INTERVAL
 
 
+def test_the_same_deaths_among_other_people_are_not_the_same() -> None:
+    """Chance in deaths moves both sides, but not alike."""
+    panel = gompertz_panel(seed=1)
+    fewer = replace(panel, exposure=panel.exposure * np.linspace(0.8, 0.9, len(panel.grid)))
+    names = codes(panel, "this"), codes(panel, "that")
+    for indicator in (E0, MEDIAN):
+        got = difference(indicator, panel, fewer, SETTINGS_1, shared=panel.deaths, streams=names)
+        assert got.reason == Reason.NONE
+        assert got.low < got.value < got.high
+
+
 def test_shared_deaths_narrow_a_simulated_difference_as_they_narrow_a_delta_one() -> None:
     part, rest = (gompertz_panel(seed=seed, people=5e6) for seed in (1, 2))
     whole = replace(part, deaths=part.deaths + rest.deaths, exposure=part.exposure + rest.exposure)
@@ -223,6 +234,12 @@ def test_a_difference_names_what_either_side_lacks() -> None:
         got = difference(E0, this, that, SETTINGS_1)
         assert np.isnan(got.value)
         assert got.reason == Reason.TOO_FEW_PERSON_YEARS
+    nothing = replace(sound, deaths=sound.deaths * np.nan)
+    for this, that, why in (
+        (few, nothing, Reason.TOO_FEW_PERSON_YEARS),
+        (nothing, few, Reason.NOT_AVAILABLE),
+    ):
+        assert difference(E0, this, that, SETTINGS_1).reason == why
 
 
 def test_joined_groups_keep_the_covariance_of_what_they_share() -> None:
