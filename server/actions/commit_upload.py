@@ -40,7 +40,8 @@ def commit_upload(
 
     Raises: NotAllowed; Missing; Stale where another edition stands than at the check; Refused
     where the upload is an edition already, is not mapped or checked, has errors, has warnings and
-    the note is empty, or its areas form no tree.
+    the note is empty, it was changed meanwhile, its areas form no tree, or its totals cannot be
+    summed.
     """
     by.require(Right.COMMIT)
     sound = require_sound(uploads.find(session, upload_id))
@@ -58,6 +59,7 @@ def commit_upload(
     prepared = editions.prepare(session, change)
     with transaction(session):
         editions.require_base(session, change.collection, change.base)
+        uploads.require_unchanged(session, sound.upload)
         return editions.write(session, prepared, by=by.name, note=note.strip(), at=now)
 
 

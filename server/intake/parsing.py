@@ -140,7 +140,7 @@ def _areas(
     areas = tuple(
         Area(
             code=code,
-            name=(named if code == whole else "") or next(iter(names[code]), code),
+            name=(named if code == whole else "") or next(iter(names[code]), ""),
             parent="" if code == whole else whole,
             delivered=code in delivered,
         )

@@ -46,7 +46,7 @@ class Area:
     """One area of a collection. Parents are content of the edition, names are presentation."""
 
     code: str
-    name: str
+    name: str  # of an upload that gives none: empty, and the area keeps the name it has
     parent: str = ""  # code of the area it is part of; empty at the top
     delivered: bool = False  # its counts were delivered as such, not summed from its parts
 

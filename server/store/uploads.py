@@ -62,6 +62,25 @@ def find(session: Session, upload_id: int) -> Upload:
     return found[0]
 
 
+def lock(session: Session, upload_id: int) -> Upload:
+    """The upload, held until the transaction ends, so that what is read of it stays true. (SQLite's
+    writers take turns anyway.) Raises: Missing."""
+    find(session, upload_id)
+    session.execute(select(UploadRow.id).where(UploadRow.id == upload_id).with_for_update())
+    return find(session, upload_id)
+
+
+def require_unchanged(session: Session, upload: Upload) -> None:
+    """Refuse where a draft is no longer what was read of it; nobody else can change it before the
+    transaction ends. Raises: Missing, Refused."""
+    if lock(session, upload.id) != upload:
+        raise Refused(
+            "Upload {upload} was changed while it was being committed. Look at what it says now, "
+            "then commit it.",
+            upload=upload.id,
+        )
+
+
 def listing(session: Session, collection: str | None = None) -> tuple[Upload, ...]:
     """Uploads of a collection, or of all, newest first; their contents are not read."""
     if collection is None:
@@ -116,7 +135,7 @@ def erase(session: Session, upload_id: int) -> None:
 
 
 def _draft(session: Session, upload_id: int) -> Upload:
-    upload = find(session, upload_id)
+    upload = lock(session, upload_id)
     if upload.edition is not None:
         raise Refused(
             "Upload {upload} has become edition {edition} and stays as it is. "

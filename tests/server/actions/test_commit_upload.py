@@ -167,6 +167,65 @@ def test_an_edition_made_between_the_reading_and_the_writing_is_noticed(
     assert [one.upload for one in editions.listing(session, "saltmarsh")] == [second.id]
 
 
+def test_a_draft_changed_between_the_reading_and_the_writing_is_noticed(
+    session: Session, new_session: sessionmaker[Session], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """An edition is what its own mapping makes of its bytes, or it is not made."""
+    draft = checked_upload(session, counts_csv())
+    swapped = replace(COLUMNS, deaths="population", population="deaths")
+    prepare = editions.prepare
+
+    def overtaken(own: Session, change: object) -> editions.Prepared:
+        prepared = prepare(own, change)  # type: ignore[arg-type]
+        with new_session() as other, transaction(other):
+            mappings = {"counts": swapped.to_json()}
+            uploads.set_mapping(other, draft.id, mappings=mappings, basis=BASIS)
+        return prepared
+
+    monkeypatch.setattr(editions, "prepare", overtaken)
+    with pytest.raises(Refused, match="Upload 1 was changed while it was being committed"):
+        commit(session, draft.id)
+    assert editions.listing(session, "saltmarsh") == ()
+
+
+def test_a_draft_cannot_be_changed_while_it_is_written(
+    session: Session, new_session: sessionmaker[Session], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    draft, ends = checked_upload(session, counts_csv()), []
+    write = editions.write
+
+    def change() -> None:
+        with new_session() as other:
+            try:
+                with transaction(other):
+                    uploads.erase(other, draft.id)
+            except Refused as refused:
+                ends.append(str(refused))
+
+    thread = Thread(target=change)
+
+    def overtaken(*arguments: object, **said: object) -> Edition:
+        thread.start()
+        thread.join(timeout=0.3)
+        return write(*arguments, **said)  # type: ignore[arg-type]
+
+    monkeypatch.setattr(editions, "write", overtaken)
+    assert commit(session, draft.id).upload == draft.id
+    thread.join()
+    assert ends == [
+        "Upload 1 has become edition 1 and stays as it is. Hand the corrected file in as a new "
+        "upload."
+    ]
+
+
+def test_an_upload_without_names_leaves_the_names_there_are(session: Session) -> None:
+    named = replace(COLUMNS, area="", only_area="north", only_area_name="North Shore")
+    handed(session, counts_csv(["north"]), mapping=named)
+    handed(session, counts_csv(["north", "south"], times=2))
+    names = [area.name for area in areas.listing(session, "saltmarsh", 2)]
+    assert names == ["North Shore", "south"]
+
+
 def test_of_commits_at_the_same_moment_one_is_made(
     session: Session, new_session: sessionmaker[Session]
 ) -> None:

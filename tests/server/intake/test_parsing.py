@@ -210,14 +210,14 @@ def test_a_whole_that_is_summed_is_not_kept() -> None:
     assert hashes(parsed) == hashes(parse([counts(SOUND)]))
     assert parsed.areas == (
         Area("isle", "Isle"),
-        Area("north", "north", parent="isle"),
-        Area("south", "south", parent="isle"),
+        Area("north", "", parent="isle"),
+        Area("south", "", parent="isle"),
     )
 
 
 def test_a_whole_that_is_delivered_is_kept() -> None:
     parsed = parse([counts(SOUND + WHOLE, whole="isle", delivered=("isle",))])
-    assert parsed.areas[0] == Area("isle", "isle", delivered=True)
+    assert parsed.areas[0] == Area("isle", "", delivered=True)
     assert parsed.cells[replace(WOMEN_2012, area="isle")].values[0] == 2 * 23
 
 
