@@ -70,14 +70,15 @@ def totalled(
 ) -> Totalled:
     """What was handed in, laid over the base, with its totals.
 
-    Persons are women and men together, unless persons were handed in. An area that has parts and
+    Persons are women and men together where both stand. An area that has parts and
     is not delivered is the sum of all its parts on their common age groups, or not available where
     a part is missing; what was handed in for it only served the checks. A sum is provisional where
     a part of it is.
 
     `areas` are those of the new edition in tree order; `base` holds the periods needed.
-    Raises: ValueError where a schedule is of no known area; Refused where counts were handed in
-    for an area that has parts, is not delivered, and cannot be summed.
+    Raises: ValueError where a schedule is of no known area; Refused where persons were handed in
+    beside women and men that stand, or counts for an area that has parts, is not delivered, and
+    cannot be summed.
     """
     unknown = {key.area for key in handed} - {area.code for area in areas}
     if unknown:
@@ -124,13 +125,18 @@ def total(cells: list[Vector]) -> Vector:
 
 
 def _persons(own: Cells, standing: Cells) -> dict[Key, Vector]:
-    """Persons anew wherever women or men were handed in without persons."""
+    """Persons anew wherever women or men were handed in. Raises: Refused where persons were."""
     made: dict[Key, Vector] = {}
-    for key in own:
-        persons = replace(key, sex="p")
-        if persons in own or persons in made:
-            continue
-        women, men = (standing.get(replace(key, sex=sex)) for sex in ("f", "m"))
+    for persons in dict.fromkeys(replace(key, sex="p") for key in own):
+        women, men = (standing.get(replace(persons, sex=sex)) for sex in ("f", "m"))
+        if women and men and persons in own:
+            raise Refused(
+                "Persons were handed in for {area} in {period}, but the edition that stands has "
+                "women and men, and persons are their sum. Hand in women and men, or replace the "
+                "edition as a whole.",
+                area=persons.area,
+                period=persons.period,
+            )
         if women and men:
             made[persons] = total([women, men])
     return made

@@ -32,9 +32,19 @@ def test_persons_are_women_and_men() -> None:
     assert made[key("a", "p")].values.tolist() == expected.tolist()
 
 
-def test_persons_that_were_handed_in_stay() -> None:
-    handed = cells("a", sexes="fmp")
+def test_persons_alone_stay() -> None:
+    handed = cells("a", sexes="p")
     assert totalled(handed, (Area("a", ""),), base={}).cells == handed
+
+
+def test_persons_beside_women_and_men_that_stand_are_refused() -> None:
+    base = totalled(cells("a"), (Area("a", ""),), base={}).cells
+    for sexes in ("p", "pf"):
+        with pytest.raises(Refused, match="Persons were handed in for a in 2001, but the edition"):
+            totalled(cells("a", sexes=sexes), (Area("a", ""),), base=base)
+    women = {key: cell for key, cell in base.items() if key.sex == "f"}
+    handed = cells("a", sexes="p", times=3.0)
+    assert totalled(handed, (Area("a", ""),), base=women).cells == handed
 
 
 def test_one_sex_alone_makes_no_persons() -> None:
