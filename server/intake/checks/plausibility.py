@@ -1,4 +1,4 @@
-"""Checks of counts against the years around them and against births."""
+"""Checks of counts against the years around them, against births and against one another."""
 
 from collections.abc import Iterator
 from dataclasses import dataclass
@@ -10,6 +10,7 @@ from server.intake.cells import YEARS, Flags, Ints, sexes_of
 from server.intake.checks.check import Check
 from server.intake.ledger import Ledger, Line
 from server.intake.problems import Fault, Value, figure
+from server.intake.schedules import MEASURES
 
 
 @dataclass(frozen=True, slots=True)
@@ -121,6 +122,35 @@ def _changing_ages(ledger: Ledger) -> Iterator[Fault]:
             yield block.fault(block.row[line, 0], place_values | {"ages": ages})
 
 
+def _more_deaths(ledger: Ledger) -> Iterator[Fault]:
+    for pair in ledger.pairs:
+        deaths, people = pair.deaths.values.sum(axis=-1), pair.people.values.sum(axis=-1)
+        for line in np.flatnonzero((deaths > people) & (people > 0)).tolist():
+            values = {"deaths": float(deaths[line]), "people": float(people[line])}
+            place = ledger.named(int(pair.deaths.place[line]))
+            yield pair.deaths.fault(pair.deaths.row[line], place | values)
+
+
+def _points(ledger: Ledger) -> Iterator[Fault]:
+    """Measures none of whose numbers has four digits before the point or after it, and some three
+    after it: 12.345 and 987, as where the point stands between thousands."""
+    for measure in MEASURES.values():
+        blocks = ledger.of(measure)
+        if any(
+            block.values.max() >= 1000 or not _whole(block.values * 1000).all() for block in blocks
+        ):
+            continue
+        for block in blocks:
+            pointed = ~_whole(block.values * 100)
+            if pointed.any():
+                values = {"text": f"{block.values[pointed][0]:.3f}"}
+                yield block.fault(block.row[pointed], values)
+
+
+def _whole(values: Array) -> Flags:
+    return np.asarray(np.abs(values - np.round(values)) < 1e-6)
+
+
 CHECKS: tuple[Check[Ledger], ...] = (
     Check(
         key="jump_of_deaths",
@@ -171,5 +201,25 @@ CHECKS: tuple[Check[Ledger], ...] = (
         expected="the same age groups in every year",
         remedy="Look whether an age is missing; comparisons are made on the common groups.",
         find=_changing_ages,
+    ),
+    Check(
+        key="deaths_exceed_population",
+        severity="warning",
+        meaning="More people died in a year than lived in it.",
+        found="{deaths} deaths in {area}, {sex} {year}",
+        expected="fewer than {people}, the population",
+        remedy="Look whether the two columns are taken for one another, or a number was cut short.",
+        find=_more_deaths,
+    ),
+    Check(
+        key="points_between_thousands",
+        severity="warning",
+        meaning="No number of a column is 1000 or more and some have three decimals, as where "
+        "a point stands between thousands. The point is taken for a decimal point.",
+        found="{text}, and no number of 1000 or more",
+        expected="a point before decimals only",
+        remedy="If the point stands between thousands, take it out; if decimals are meant, say so "
+        "in the note.",
+        find=_points,
     ),
 )

@@ -124,6 +124,12 @@ CASES = (
     Case("infant_deaths_exceed_births", lambda: [counts(SOUND), births(42)]),
     Case("fractional_deaths", _set(ONE, deaths=640.5)),
     Case("age_groups_change", lambda: [counts(_joined("5-14", "15-44", "5-44", WOMEN))]),
+    Case("deaths_exceed_population", _mapped(deaths="population", population="deaths")),
+    Case(
+        "points_between_thousands",
+        lambda: [deaths(SOUND), population(_pointed())],
+        "deaths_exceed_population",
+    ),
 )
 
 
@@ -146,6 +152,15 @@ def _joined(
     """The table with two age groups in one, everywhere or among some rows."""
     table = without(SOUND, where(among, age=second))
     return setting(table, where(among, age=first), age=together)
+
+
+def _pointed() -> list[dict[str, object]]:
+    """The table with a point between the thousands of the populations: 27.000, 950."""
+    return [
+        row | {"population": f"{people // 1000}.{people % 1000:03d}" if people > 999 else people}
+        for row in SOUND
+        if (people := int(str(row["population"])))
+    ]
 
 
 def _only_old() -> list[dict[str, object]]:
