@@ -11,11 +11,17 @@ from server.pages import frames, trend_chart
 from server.pages import trend_tables as tables
 from server.pages.choices import Offer, Options, offer
 from server.pages.page import Caution, Page
-from server.results.questions import TrendQuestion
+from server.results.questions import (
+    ComparisonQuestion,
+    PopulationYear,
+    PopulationYearQuestion,
+    TrendQuestion,
+    address,
+)
 from server.results.series import Series, series
 from server.sentences import basis, names
 from server.sentences import trend as say
-from server.sentences.pieces import Sentence, phrase
+from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.reasons import reason
 from server.sentences.standing import Headline
 from server.sentences.text import _
@@ -40,10 +46,12 @@ class TrendPage(Page):
     """One indicator through time."""
 
     template: ClassVar[str] = "trend/page.html"
+    out_of_band: ClassVar[tuple[str, ...]] = ("areas", "sexes")  # none chosen: the page chooses
     drawn: bool
     choice: Choice
     computed: tuple[Sentence, ...]
     basis: tuple[Sentence, ...]
+    further: tuple[Sentence, ...]
 
 
 def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendPage:
@@ -53,7 +61,9 @@ def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendP
     told = [one for one in courses if one is not None]
     area, sex = found.lines[0]
     chart = trend_chart.draw(found, say.finding(label, told), frames.source(heading))
-    lead = (say.halves(courses[0]), say.others(told[1 : 1 + SAID])) if courses[0] else ()
+    lead = [say.meaning(question.of)]
+    if courses[0]:
+        lead += [say.halves(courses[0]), say.others(told[1 : 1 + SAID])]
     return TrendPage(
         frame=frames.pinned(
             heading,
@@ -79,13 +89,15 @@ def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendP
         choice=_choice(found),
         computed=(
             phrase(
-                _("Definition. {definition} Source: {source}."),
+                _("{name} {definition} Source: {source}."),
+                name=Piece(f"{label}.", emphasis="strong"),
                 definition=_(found.indicator.definition),
                 source=found.indicator.source,
             ),
             *basis.computed(found.settings),
         ),
         basis=frames.basis(heading.edition.basis),
+        further=_further(found, courses),
     )
 
 
@@ -108,6 +120,24 @@ def course(found: Series, line: int) -> say.Course | None:
         found.earlier[line],
         found.later[line],
     )
+
+
+def _further(found: Series, courses: list[say.Course | None]) -> tuple[Sentence, ...]:
+    """For the first lines: the comparison of their ends, and the life table of the last year."""
+    asked, heading = found.question, found.heading
+    place = (heading.collection.code, heading.edition.number)
+    changes, lives = [], []
+    for line, one in zip(found.lines[: SAID + 1], courses, strict=False):
+        if one is None:
+            continue
+        last, first = (PopulationYear(*line, period) for period in (one.last, one.first))
+        compared = ComparisonQuestion(last, first, asked.of, asked.figures, asked.settings)
+        lived = PopulationYearQuestion(last, asked.figures, asked.settings)
+        words = _("{who}, {last} against {first}", who=one.who, last=one.last, first=one.first)
+        changes.append(Piece(words, address(*place, compared)))
+        words = _("{who} in {year}", who=one.who, year=one.last)
+        lives.append(Piece(words, address(*place, lived)))
+    return say.further(changes, lives)
 
 
 def _headline(found: Series) -> Headline:

@@ -70,14 +70,15 @@ def _scale(low: float, high: float) -> tuple[float, tuple[float, ...]]:
 
 def _unit(found: Series) -> str:
     text = _(
-        "{label}, {unit}, {first} to {last}; bands are {level} % intervals, hollow points are"
-        " provisional",
+        "{label}, {unit}, {first} to {last}; bands are {level} % intervals",
         label=_(found.indicator.label),
         unit=_(found.indicator.unit.label),
         first=found.periods[0],
         last=found.periods[-1],
         level=round(100 * found.settings.level),
     )
+    if any("provisional" in status for status in found.status):
+        text = _("{text}, hollow points are provisional", text=text)
     sexes = {sex for _area, sex in found.lines}
     if len(sexes) < 2:
         return text

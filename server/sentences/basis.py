@@ -129,11 +129,16 @@ def further(comparisons: Sequence[Piece], years: Piece) -> tuple[Sentence, ...]:
     trend = phrase(_("Which way is it going? {years}."), years=years)
     if not comparisons:
         return (trend,)
-    parts: list[Piece] = []
-    for at, link in enumerate(comparisons):
-        parts += [Piece(", ")] if at else []
-        parts.append(link)
     return (
-        (*phrase(_("What makes the difference? Compare it ")), *parts, Piece(".")),
+        (*phrase(_("What makes the difference? Compare it ")), *in_a_row(comparisons), Piece(".")),
         trend,
     )
+
+
+def in_a_row(links: Sequence[Piece]) -> Sentence:
+    """Links with commas between them."""
+    parts: list[Piece] = []
+    for at, link in enumerate(links):
+        parts += [Piece(", ")] if at else []
+        parts.append(link)
+    return tuple(parts)

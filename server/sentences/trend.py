@@ -5,6 +5,7 @@ from dataclasses import dataclass
 from engine.estimates import Estimate
 from engine.indicators import Indicator
 from server.sentences import names
+from server.sentences.basis import in_a_row
 from server.sentences.movements import (
     Movement,
     bracketed,
@@ -50,7 +51,14 @@ class Course:
         unit = self.indicator.unit
         if unit.key == "years":
             return years(float(change.value), unit.decimals)
-        text = number(abs(unit.scale * float(change.value)), unit.decimals)
+        return self._with_unit(number(abs(unit.scale * float(change.value)), unit.decimals))
+
+    def signed(self, change: Estimate) -> str:
+        """A change with its sign and its unit."""
+        return self._with_unit(shown(change, self.indicator.unit, signed=True))
+
+    def _with_unit(self, text: str) -> str:
+        unit = self.indicator.unit
         if unit.key == "ratio":
             return text
         label = _("percentage points") if unit.label.startswith("%") else _(unit.label)
@@ -92,7 +100,7 @@ def answer(course: Course | None, label: str, who: str) -> Sentence:
                 "No clear change in {label} of {who} between {first} and {last}:"
                 " {value} {interval}."
             ),
-            value=shown(course.change, unit, signed=True),
+            value=course.signed(course.change),
             interval=bracketed(limits(course.change, unit, signed=True)),
             **{**parts, "who": course.who},
         )
@@ -132,8 +140,7 @@ def halves(course: Course) -> Sentence:
         kind = movement(change, unit)
         if kind is Movement.UNKNOWN or kind is Movement.WITHOUT_INTERVAL:
             return ()
-        value = shown(change, unit, signed=True)
-        clear = _("no clear change") if kind not in CLEAR else value
+        clear = _("no clear change") if kind not in CLEAR else course.signed(change)
         said.append(
             _(
                 "{clear} from {first} to {last} ({interval})",
@@ -168,7 +175,7 @@ def others(courses: list[Course]) -> Sentence:
                 _(
                     "{who} {value} ({interval})",
                     who=course.who,
-                    value=shown(course.change, unit, signed=True),
+                    value=course.signed(course.change),
                     interval=limits(course.change, unit, signed=True),
                 )
             )
@@ -181,7 +188,9 @@ def finding(label: str, courses: list[Course]) -> str:
     """The chart's title: where the lines end, as far as words can hold it."""
     if not courses:
         return label
-    first, *others = courses[:2]
+    if len(courses) > 2:
+        return _range(label, courses)
+    first, *others = courses
     value, who = shown(first.at_last, first.indicator.unit), first.who
     ends = [_("{value} for {who}", value=value, who=who)]
     for other in others:
@@ -192,6 +201,49 @@ def finding(label: str, courses: list[Course]) -> str:
             else _("in {year} {value} for {who}", year=other.last, value=value, who=who)
         )
     return _("{label} in {year}: {ends}", label=label, year=first.last, ends=names.listed(ends))
+
+
+def _range(label: str, courses: list[Course]) -> str:
+    """Of many lines the lowest and the highest end, among those that end last."""
+    last = max(course.last for course in courses)
+    ends = [course for course in courses if course.last == last]
+    low, high = (end(ends, key=lambda one: float(one.at_last.value)) for end in (min, max))
+    return _(
+        "{label} in {year}: from {low} for {these} to {high} for {those}",
+        label=label,
+        year=last,
+        low=shown(low.at_last, low.indicator.unit),
+        these=low.who,
+        high=shown(high.at_last, high.indicator.unit),
+        those=high.who,
+    )
+
+
+def meaning(key: str) -> Sentence:
+    """How a figure that is not met every day is to be read."""
+    texts = {
+        "median": _("It is the age that half of those born would live past."),
+        "edagger": _("The lower it is, the more alike are lengths of life."),
+        "H": _(
+            "The lower it is, the more alike are lengths of life: at 0 all would reach the same"
+            " age, at 1 the risk of dying would be the same at every age."
+        ),
+        "ageing_rate": _(
+            "It sets people of different ages beside each other in one year, and does not say how"
+            " fast anyone ages."
+        ),
+    }
+    return phrase(texts[key]) if key in texts else ()
+
+
+def further(changes: list[Piece], tables: list[Piece]) -> tuple[Sentence, ...]:
+    """Where to go from the lines: what the change is made of, and the year they end in."""
+    if not changes:
+        return ()
+    return (
+        (*phrase(_("At which ages did the change come about? ")), *in_a_row(changes), Piece(".")),
+        (*phrase(_("How long do people live there? ")), *in_a_row(tables), Piece(".")),
+    )
 
 
 def small(lines: list[str]) -> tuple[str, str] | None:

@@ -78,6 +78,15 @@ def test_the_whole_comes_first_and_colours_follow_the_palette(isle: Session) -> 
     assert [series.role for series in both.charts[0].series] == ["s1", "s1", "s2", "s2"]
 
 
+def test_from_the_lines_one_can_go_on(isle: Session) -> None:
+    built = page(isle, "H", areas=("north",), sexes=("m",))
+    changes, lives = (sentence[1] for sentence in built.further)
+    assert changes.href.startswith("/c/isle/1/comparison?this=north.m.2014&that=north.m.2005&of=H")
+    assert lives.href.startswith("/c/isle/1/population-year?of=north.m.2014")
+    assert "more alike" in words(built)
+    assert page(isle, "e67", areas=("north",)).further == ()
+
+
 def test_small_populations_are_flagged(isle: Session) -> None:
     told = {caution.word: caution.text for caution in page(isle, areas=("rock", "north")).cautions}
     assert "women of Rock" in told["Small numbers"]

@@ -38,8 +38,8 @@ def test_a_gain_and_how_it_was_spread() -> None:
         " (3.9 to 4.5)."
     )
     assert words(say.halves(one)) == (
-        "In the two halves of these years: +1.5 from 1995 to 2003 (+1.2 to +1.8); no clear change"
-        " from 2003 to 2012 (−0.2 to +0.4)."
+        "In the two halves of these years: +1.5 years from 1995 to 2003 (+1.2 to +1.8); no clear"
+        " change from 2003 to 2012 (−0.2 to +0.4)."
     )
     assert say.halves(replace(one, middle="")) == ()
 
@@ -81,10 +81,24 @@ def test_small_numbers_are_named() -> None:
 def test_the_finding_gives_each_line_the_year_it_ends_in() -> None:
     women = course(estimate(4.2, 3.9, 4.5))
     men = replace(women, sex="m")
-    both = say.finding("Life expectancy", [women, men, men])
+    both = say.finding("Life expectancy", [women, men])
     assert both == (
         "Life expectancy in 2012: 82.0 for women of Northlade and 82.0 for men of Northlade"
     )
     apart = say.finding("Life expectancy", [women, replace(men, last="2009")])
     assert apart.endswith("82.0 for women of Northlade and in 2009 82.0 for men of Northlade")
     assert say.finding("Life expectancy", []) == "Life expectancy"
+
+
+def test_the_finding_of_many_lines_gives_the_lowest_and_the_highest_end() -> None:
+    women = course(estimate(4.2, 3.9, 4.5))
+    men = replace(women, sex="m", at_last=estimate(78.1))
+    gone = replace(men, area="Tollbay", last="2009", at_last=estimate(70.0))
+    assert say.finding("Life expectancy", [women, men, gone]) == (
+        "Life expectancy in 2012: from 78.1 for men of Northlade to 82.0 for women of Northlade"
+    )
+
+
+def test_a_figure_not_met_every_day_is_explained() -> None:
+    assert "more alike" in words(say.meaning("H"))
+    assert say.meaning("e0") == ()
