@@ -1,7 +1,7 @@
 """A page as JSON: its address, what stands beside the figures, and the figures of every table.
 
 The bytes under "figures" depend on the address and the engine alone: what may change under an
-address, such as the name of an area, stands elsewhere (notices, the headings under "tables").
+address, such as the name of an area, stands elsewhere (notices, headings and names under "tables").
 Numbers are in full, and a gap is an object with its kind and reason.
 """
 
@@ -35,8 +35,11 @@ def _said(told: tuple[Told, ...]) -> list[dict[str, str]]:
 
 
 def _heads(table: Table) -> dict[str, Any]:
-    note = {"note": table.note} if table.note else {}
-    return {"title": table.title, "columns": [*map(_column, table.columns)]} | note
+    names = {str(row.cells[0]): row.shown for row in all_rows(table) if row.shown}
+    heads = {"title": table.title, "columns": [*map(_column, table.columns)]}
+    return (
+        heads | ({"names": names} if names else {}) | ({"note": table.note} if table.note else {})
+    )
 
 
 def _figures(table: Table) -> dict[str, Any]:

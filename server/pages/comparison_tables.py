@@ -55,10 +55,15 @@ def _head(label: str, side: Side) -> str:
 
 def _figure_row(found: Comparison, key: str) -> Row:
     indicator = find(key)
-    cells: list[Cell] = [_(indicator.label)]
+    cells: list[Cell] = [key]
     for side in (found.this.estimates[key], found.that.estimates[key], found.difference[key]):
         cells += triple(side, indicator.unit, found.settings)
-    return Row(tuple(cells), second=_(indicator.unit.label), decimals=indicator.unit.decimals)
+    return Row(
+        tuple(cells),
+        second=_(indicator.unit.label),
+        shown=_(indicator.label),
+        decimals=indicator.unit.decimals,
+    )
 
 
 def survivors(found: Comparison) -> Table:

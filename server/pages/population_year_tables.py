@@ -62,13 +62,18 @@ def _why_missing(found: Findings) -> list[str]:
 
 def _figure_row(found: Findings, key: str) -> Row:
     indicator = find(key)
-    cells: list[Cell] = [_(indicator.label)]
+    cells: list[Cell] = [key]
     sides: list[Estimate] = [found.estimates[key]]
     if found.before:
         sides += [found.before.estimates[key], found.before.change[key]]
     for side in sides:
         cells += triple(side, indicator.unit, found.settings)
-    return Row(tuple(cells), second=_second_line(key, found), decimals=indicator.unit.decimals)
+    return Row(
+        tuple(cells),
+        second=_second_line(key, found),
+        shown=_(indicator.label),
+        decimals=indicator.unit.decimals,
+    )
 
 
 def _second_line(key: str, found: Findings) -> str:

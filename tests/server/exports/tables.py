@@ -20,6 +20,12 @@ YEARS = Table(
     note="Invented.",
     total=Row(("sum", "", 82.5, 0.375)),
 )
+NAMED = Table(
+    key="areas",
+    title="Areas",
+    columns=(Column("area", "area"), Column("e0", "years", decimals=1)),
+    rows=(Row(("st.john", 80.5), shown="St John"), Row(("cape", Gap(GapKind.NOT_AVAILABLE)))),
+)
 
 
 def a_twin(*tables: Table) -> Twin:

@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 
 from server.exports import csv
 from server.exports.table import Column, Row, Table
-from tests.server.exports.tables import YEARS
+from tests.server.exports.tables import NAMED, YEARS
 
 
 def read(content: bytes) -> list[dict[str, str]]:
@@ -23,6 +23,12 @@ def test_the_bytes_of_a_table_with_every_kind_of_cell() -> None:
         '2012,"a ""quoted"", name",,withheld,0.5,,,yes\r\n'
         '2013,"line\nbreak",82.0,,,nil,a remark,\r\n'
         "sum,,82.5,,0.375,,,\r\n"
+    )
+
+
+def test_the_name_behind_a_code_stands_beside_it() -> None:
+    assert csv.write(NAMED).decode() == (
+        "area,area_name,e0,e0_missing\r\nst.john,St John,80.5,\r\ncape,,,not available\r\n"
     )
 
 

@@ -6,7 +6,7 @@ import orjson
 
 from server.exports import json
 from server.exports.table import Row
-from tests.server.exports.tables import YEARS, a_twin
+from tests.server.exports.tables import NAMED, YEARS, a_twin
 
 
 def test_what_the_file_holds() -> None:
@@ -41,6 +41,12 @@ def test_notices_and_new_names_leave_the_bytes_of_the_figures_as_they_are() -> N
     after = json.write(replace(a_twin(), notices=(), tables=named))
     assert before != after
     assert before.partition(b'"figures"')[2] == after.partition(b'"figures"')[2]
+
+
+def test_names_stand_beside_the_figures() -> None:
+    content = orjson.loads(json.write(a_twin(NAMED)))
+    assert content["tables"]["areas"]["names"] == {"st.john": "St John"}
+    assert content["figures"]["areas"]["rows"][0] == {"area": "st.john", "e0": 80.5}
 
 
 def test_every_number_of_the_table_is_in_the_file() -> None:
