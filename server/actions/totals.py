@@ -4,6 +4,8 @@ from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, replace
 from functools import reduce
 
+import numpy as np
+
 from engine.ages import AgeGrid
 from server.store.areas import in_tree_order
 from server.store.errors import Refused
@@ -72,13 +74,13 @@ def totalled(
 
     Persons are women and men together where both stand. An area that has parts and
     is not delivered is the sum of all its parts on their common age groups, or not available where
-    a part is missing; what was handed in for it only served the checks. A sum is provisional where
-    a part of it is.
+    a part is missing; what was handed in for it must agree with the sum. A sum is provisional
+    where a part of it is.
 
     `areas` are those of the new edition in tree order; `base` holds the periods needed.
     Raises: ValueError where a schedule is of no known area; Refused where persons were handed in
     beside women and men that stand, or counts for an area that has parts, is not delivered, and
-    cannot be summed.
+    cannot be summed or is not the sum.
     """
     unknown = {key.area for key in handed} - {area.code for area in areas}
     if unknown:
@@ -111,6 +113,8 @@ def totalled(
             period=lost[0].period,
             measure=lost[0].measure,
         )
+    for key in sorted(handed.keys() - own.keys()):
+        _require_sum(key, handed[key], cells[key], len(parts[key.area]))
     return Totalled(cells, frozenset(sums_before - cells.keys()), areas)
 
 
@@ -122,6 +126,26 @@ def total(cells: list[Vector]) -> Vector:
         values = values + cell.grid.regroup(cell.values, grid)
     status = "provisional" if any(cell.status == "provisional" for cell in cells) else "final"
     return Vector(status, grid, values)
+
+
+def _require_sum(key: Key, handed: Vector, made: Vector, parts: int) -> None:
+    """Refuse counts of a whole that its parts do not add up to. (Of a whole handed in with all its
+    parts, and said to be the whole, the checks have told, and only the parts are handed on.)"""
+    grid = handed.grid.common(made.grid)
+    given = handed.grid.regroup(handed.values, grid)
+    off = np.abs(given - made.grid.regroup(made.values, grid))
+    if off.max() > 0.5 * (parts + 1):  # whole numbers of persons may each have been rounded
+        raise Refused(
+            "The {measure} handed in for {area} in {period} ({sex}, age {age}) differ by {off} "
+            "from the sum of its parts. Hand in all its parts, take {area} out, or declare it as "
+            "delivered.",
+            measure=key.measure,
+            area=key.area,
+            sex=key.sex,
+            period=key.period,
+            age=grid.labels[int(off.argmax())],
+            off=f"{off.max():.15g}",
+        )
 
 
 def _persons(own: Cells, standing: Cells) -> dict[Key, Vector]:

@@ -111,12 +111,25 @@ def test_a_part_of_the_base_is_enough() -> None:
     assert key("b") not in made
 
 
-def test_what_was_handed_in_for_a_summed_area_only_served_the_checks() -> None:
-    handed = cells("wab")
-    made = totalled(handed, merged(FLAT, ()), base={}).cells
-    assert made[key("w")].values.tolist() != handed[key("w")].values.tolist()
-    a, b = handed[key("a")].values, handed[key("b")].values
-    assert made[key("w")].values.tolist() == (a + b).tolist()
+def test_what_was_handed_in_for_a_summed_area_must_be_the_sum() -> None:
+    """Else a revised whole handed in without its parts would go by without a word."""
+    parts = cells("ab")
+    base = totalled(parts, merged(FLAT, ()), base={}).cells
+    sums = only(base, "w")
+    made = totalled(parts | sums, merged(FLAT, ()), base={}).cells
+    assert {key: made[key].values.tolist() for key in sums} == {
+        key: cell.values.tolist() for key, cell in sums.items()
+    }
+    rounded = {key: replace(cell, values=cell.values + 1.5) for key, cell in sums.items()}
+    made = totalled(parts | rounded, merged(FLAT, ()), base={}).cells
+    assert made[key("w")].values.tolist() == sums[key("w")].values.tolist()
+    off = {key: replace(cell, values=cell.values + 1.6) for key, cell in sums.items()}
+    with pytest.raises(
+        Refused,
+        match=r"The deaths handed in for w in 2001 \(f, age 0\) differ by 1\.6\d* from the sum of "
+        "its parts. Hand in all its parts, take w out, or declare it as delivered",
+    ):
+        totalled(off, merged(FLAT, ()), base=base, base_areas=merged(FLAT, ()))
 
 
 def test_a_delivered_area_keeps_its_own_counts_and_its_persons_are_its_sexes() -> None:
