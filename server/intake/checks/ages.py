@@ -42,8 +42,10 @@ def _closed(rows: Ordered) -> Flags:
         | ((step == 4) & (rows.start == 1))
         | (((step == 5) | (step == 10)) & (rows.start % 5 == 0))
     )
-    narrows = (np.roll(step, -1) < step) & ~np.roll(rows.last, -1)
-    return np.where(end >= 0, _next(rows) > end + 1, ~usual | narrows)
+    to_last = np.roll(rows.last, -1)
+    narrows = (np.roll(step, -1) < step) & ~to_last
+    widens = (np.roll(step, 1) < step) & ~rows.first & to_last & (rows.start >= 10)
+    return np.where(end >= 0, _next(rows) > end + 1, ~usual | narrows | widens)
 
 
 def _column(rows: Ordered) -> str:

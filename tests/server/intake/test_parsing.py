@@ -118,6 +118,8 @@ def test_grids_as_they_come(labels: list[str], starts: range | tuple[int, ...]) 
     [
         (["0", "1", "2", "4", "5+"], "gap_of_ages", 5),
         (["0", "1", "5", "15", "20", "25+"], "gap_of_ages", 5),
+        (["0", "1", "5", "10", "15", "25+"], "gap_of_ages", 7),
+        ([str(age) for age in range(81)] + ["85+"], "gap_of_ages", 83),
         (["0", "1-4", "10+"], "gap_of_ages", 4),
         (["0", "1-4", "4-9", "10+"], "overlap_of_ages", 4),
         (["0", "1-4", "5+", "10+"], "overlap_of_ages", 5),
