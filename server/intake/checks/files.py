@@ -64,7 +64,7 @@ def _doubled_heading(file: Layout) -> Iterator[Fault]:
 
 def _too_many_columns(file: Layout) -> Iterator[Fault]:
     if len(file.columns) > MOST_COLUMNS:
-        yield Fault(row=1, values={"count": len(file.columns), "most": MOST_COLUMNS})
+        yield Fault(row=1, values={"most": MOST_COLUMNS})
 
 
 def _too_many_rows(file: Layout) -> Iterator[Fault]:
@@ -156,8 +156,8 @@ CHECKS: tuple[Check[Layout], ...] = (
         key="too_many_columns",
         severity="error",
         meaning="The file is wider than any table in long form.",
-        found="{count} columns",
-        expected="at most {most}",
+        found="more than {most} columns",
+        expected="a few: area, sex, year, age and the counts",
         remedy="Give the table in long form: one row for each area, sex, year and age.",
         find=_too_many_columns,
     ),

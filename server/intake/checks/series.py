@@ -22,9 +22,10 @@ def _missed(ledger: Ledger, here: str, there: str) -> Ints:
 
 def _by_area(ledger: Ledger, places: Ints, measure: str) -> Iterator[Fault]:
     """A fault for each area: which sexes and years."""
-    area_of, sex_of, year_of = parts_of(places)
-    for area in np.unique(area_of).tolist():
-        here = area_of == area
+    area_of, sex_of, year_of = parts_of(places)  # in order, so that those of an area stand together
+    areas, first = np.unique(area_of, return_index=True)
+    each = np.split(np.arange(len(places)), first[1:])
+    for area, here in zip(areas.tolist(), each[: len(areas)], strict=True):
         lines = [ledger.lines[measure][place] for place in places[here].tolist()]
         rows = np.concatenate([block.row[line] for block, line in lines])
         years = _years(np.unique(year_of[here]).tolist())
