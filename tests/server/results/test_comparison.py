@@ -7,10 +7,14 @@ import numpy as np
 import pytest
 from numpy.testing import assert_allclose, assert_array_equal
 
+from engine import indicators
 from engine.ages import AgeGrid
+from engine.decomposition import contribution_limits
 from engine.estimates import Reason
 from engine.panel import Panel
+from engine.settings import find
 from server.results.comparison import Comparison, comparison
+from server.results.estimating import stream
 from server.results.loading import NotInEdition
 from server.results.questions import ComparisonQuestion, PopulationYear
 from server.store.connect import Session
@@ -26,6 +30,7 @@ from tests.factories import (
 )
 
 FIVE = GRIDS["abridged"]
+PLAIN = find("almanac-1")
 SHORT = AgeGrid(FIVE.starts[: FIVE.position(85) + 1])
 
 
@@ -103,6 +108,34 @@ def test_deaths_counted_in_both_are_counted_once(isle: Session) -> None:
     assert width / 2 < 0.85 * np.sqrt(apart)
     half = (rest.difference["e0"].high - rest.difference["e0"].low) / 2
     assert_allclose(width, half, rtol=0.1)
+
+
+def test_limits_are_those_of_both_sides_streams_with_shared_deaths_drawn_once(
+    isle: Session,
+) -> None:
+    """Also those of the contributions; what is simulated goes by the codes of the two."""
+    found = asked(isle, "north.f.2014", "isle.f.2014")
+    this, that = found.this.panel, found.that.panel
+    streams = stream("isle", found.this.of), stream("isle", found.that.of)
+    median = indicators.difference(
+        indicators.find("median"), this, that, PLAIN, shared=this.deaths, streams=streams
+    )
+    assert (found.difference["median"].low, found.difference["median"].high) == (
+        median.low,
+        median.high,
+    )
+    for key in ("e0", "H"):
+        low, high = contribution_limits(
+            indicators.find(key),
+            this,
+            that,
+            PLAIN,
+            streams=streams,
+            shared=this.deaths,
+            groups=found.groups,
+        )
+        assert_array_equal(found.contributions[key].low, low)
+        assert_array_equal(found.contributions[key].high, high)
 
 
 def test_what_both_count_is_brought_to_the_same_ages(session: Session) -> None:
