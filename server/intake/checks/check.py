@@ -45,16 +45,20 @@ class RowCheck(Kind, Generic[Subject]):
 
 
 def listed(faults: Iterable[Fault]) -> list[Fault]:
-    """The first LISTED faults and, of the rest, one that counts them."""
+    """The first LISTED faults and, of the rest, one that counts them; it names rows where all of
+    them stand in one column of one file."""
     kept = list(faults)
     if len(kept) <= LISTED + 1:
         return kept
     first, rest = kept[LISTED], kept[LISTED:]
     rows = [row for fault in rest for row in (fault.row, fault.last_row) if row is not None]
+    if len({(fault.file, fault.column) for fault in rest}) > 1:
+        first, rows = replace(first, file="", column=""), []
     return [
         *kept[:LISTED],
         replace(
             first,
+            row=min(rows, default=None),
             last_row=max(rows, default=None),
             rows=sum(fault.rows for fault in rest),
             others=len(rest) - 1,

@@ -58,3 +58,13 @@ def test_what_goes_beyond_the_list_is_counted() -> None:
     assert kept[:LISTED] == faults[:LISTED]
     assert kept[LISTED] == Fault(row=42, last_row=101, rows=60, others=29)
     assert listed(faults[: LISTED + 1]) == faults[: LISTED + 1]
+
+
+def test_what_is_counted_lies_between_its_first_and_its_last_row_in_any_order() -> None:
+    faults = [Fault(row=row, last_row=row) for row in (*range(900, 900 + LISTED), 70, 90, 50)]
+    assert listed(faults)[LISTED] == Fault(row=50, last_row=90, rows=3, others=2)
+
+
+def test_what_is_counted_over_two_files_names_no_rows() -> None:
+    faults = [Fault(file=file, column="x", row=2, last_row=2) for file in ("a", "b") * LISTED]
+    assert listed(faults)[LISTED] == Fault(rows=LISTED, others=LISTED - 1)
