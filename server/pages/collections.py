@@ -13,7 +13,7 @@ from server.sentences.pieces import Sentence, phrase
 from server.sentences.text import _
 from server.store import collections
 from server.store.connect import Session
-from server.store.editions import newest_standing
+from server.store.editions import listing, newest_standing
 from server.store.heading import Heading
 from server.store.records import Collection
 
@@ -49,7 +49,7 @@ def build(session: Session) -> CollectionsPage:
         answer=say.answer(len(known), sum(one is not None for one in found.values())),
         tables=(_table(known, found),),
         twins={twin: f"/collections.{twin}" for twin in ("csv", "xlsx", "json")},
-        entries=tuple(_entry(one, found[one.code]) for one in known),
+        entries=tuple(_entry(session, one, found[one.code]) for one in known),
     )
 
 
@@ -61,10 +61,11 @@ def _standing(session: Session, collection: Collection) -> Contents | None:
     return contents(session, Heading(collection, edition, edition.number), ContentsQuestion())
 
 
-def _entry(collection: Collection, found: Contents | None) -> Entry:
+def _entry(session: Session, collection: Collection, found: Contents | None) -> Entry:
     owner = (_("Data owner"), collection.owner)
     if found is None:
-        return Entry(collection.name, "", (say.nothing_stands(collection.code),), (owner,))
+        made = len(listing(session, collection.code))
+        return Entry(collection.name, "", (say.nothing_stands(collection.code, made),), (owner,))
     edition, held = found.heading.edition, found.holdings
     span = contents_say.holds(held.periods, len(held.areas))
     return Entry(

@@ -10,6 +10,7 @@ from server.sentences.text import _
 from server.web.problem import Problem
 
 _OF_EDITION = re.compile(r"(/c/[^/?]+)/[^/?]+(/.+)")
+_OF_UPLOAD = re.compile(r"(/uploads/\d+)/(reading|files|commit)")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -39,12 +40,23 @@ def build(problem: Problem) -> ErrorPage:
             request=problem.request_id,
         ),
         errors=problem.errors,
-        alert=Notice(problem.title, (Piece(" ".join((problem.detail, *problem.errors))),)),
+        alert=Notice(_("Not shown"), _beside_what_stays(problem)),
     )
 
 
 def _way_on(problem: Problem) -> tuple[Sentence, ...]:
-    """From a page of an edition that is not there, to the same page of the edition that stands."""
+    """From a page of an edition that is not there, to the same page of the edition that stands;
+    from a form, back to it."""
+    if problem.asked == "/uploads":
+        return (phrase(_("Back to {form}."), form=Piece(_("the files"), "/uploads/new")),)
+    if (found := _OF_UPLOAD.fullmatch(problem.asked)) is not None:
+        place, step = found.groups()
+        form = (
+            Piece(_("the mapping"), f"{place}/reading")
+            if step == "reading"
+            else Piece(_("what the checks found"), f"{place}/problems")
+        )
+        return (phrase(_("Back to {form}."), form=form),)
     found = _OF_EDITION.fullmatch(problem.asked)
     if problem.status != 404 or found is None:
         return ()
@@ -55,4 +67,13 @@ def _way_on(problem: Problem) -> tuple[Sentence, ...]:
             newest=Piece(_("the newest edition"), f"{collection}{rest}"),
             collection=Piece(_("the collection"), collection),
         ),
+    )
+
+
+def _beside_what_stays(problem: Problem) -> Sentence:
+    """The notice over a page of which nothing was replaced."""
+    return phrase(
+        "{said} {stays}",
+        said=" ".join((problem.detail, *problem.errors)),
+        stays=_("What stands below is as it was before."),
     )

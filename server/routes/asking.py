@@ -142,8 +142,8 @@ def newest(session: Session, collection: str) -> int:
     name = collections.find(session, collection).name
     raise NotInEdition(
         _(
-            "{collection} has no edition that stands, so there is nothing to show. Upload data, or"
-            " name a withdrawn edition in the address.",
+            "{collection} has no edition that stands, so there is nothing to show. Upload files for"
+            " a new one, or name a withdrawn edition.",
             collection=name,
         )
     )

@@ -11,10 +11,11 @@ from server.pages import collections as collections_page
 from server.pages import contents as contents_page
 from server.pages import editions as editions_page
 from server.results.contents import ContentsQuestion
-from server.routes.asking import SessionDep, ViewerDep, answer, ask, code, needs
+from server.routes.asking import Elsewhere, SessionDep, ViewerDep, answer, ask, code, needs
 from server.routes.forms import FormDep, text
 from server.routes.plain import show
 from server.store import collections
+from server.store.editions import newest_standing
 from server.web.render import READ, redirect
 
 router = APIRouter()
@@ -59,6 +60,9 @@ def show_contents(
     edition: int | None = None,
     twin: str = "",
 ) -> Response:
+    if edition is None and not twin and newest_standing(session, code(collection)) is None:
+        known = collections.find(session, collection)
+        raise Elsewhere(f"/c/{known.code}/editions")
     asked = ask(request, session, ContentsQuestion, collection, edition, twin=twin)
     return answer(
         request, asked, lambda: contents_page.build(session, asked.heading, asked.question)

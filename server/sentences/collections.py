@@ -13,12 +13,19 @@ def answer(count: int, standing: int) -> Sentence:
         return phrase(_("There is no collection yet. {begin}"), begin=Piece(_("Begin here."), "/"))
     if count == standing:
         return phrase(n_("One collection can be read.", "{count} collections can be read.", count))
+    if not standing:
+        return phrase(
+            n_(
+                "There is one collection, and none of its editions stands.",
+                "There are {count} collections, and none has an edition that stands.",
+                count,
+            )
+        )
     return phrase(
-        n_(
-            "There is one collection; {standing} can be read.",
+        _(
             "There are {count} collections; {standing} can be read.",
-            count,
-            standing=standing or _("none of them"),
+            count=count,
+            standing=n_("one of them", "{count} of them", standing),
         )
     )
 
@@ -35,8 +42,14 @@ def edition(number: int, made: dt.date, note: str) -> str:
     return _("Edition {number} stands, made on {day}.", number=number, day=day(made))
 
 
-def nothing_stands(code: str) -> Sentence:
-    """No edition can be gone to: what there is instead."""
+def nothing_stands(code: str, made: int) -> Sentence:
+    """No edition can be gone to: what there is instead. `made`: how many there have been."""
+    if not made:
+        return phrase(
+            _("It has no edition yet. {upload} to make one, or look at {uploads}."),
+            upload=Piece(_("Upload files"), f"/uploads/new?collection={code}"),
+            uploads=Piece(_("what has been uploaded"), "/uploads"),
+        )
     return phrase(
         _("No edition of it stands. {upload} to make one, or look at {uploads} and {editions}."),
         upload=Piece(_("Upload files"), f"/uploads/new?collection={code}"),

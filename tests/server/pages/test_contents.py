@@ -112,12 +112,12 @@ def test_collections_say_what_their_newest_standing_edition_says(isle: Session) 
     stored_collection(isle)
     edition(isle, {"north.f.2015": gompertz_panel(seed=9)}, note="2015 added")
     built = collections_page.build(isle)
-    assert plain(built.answer) == "There are 2 collections; 1 can be read."
+    assert plain(built.answer) == "There are 2 collections; one of them can be read."
     first, second = built.entries
     assert plain(first.said[0]).startswith("In 2015 life expectancy at birth in North was ")
     assert "2015 added" in dict(first.facts)["Edition"]
     assert first.href == "/c/isle"
-    assert (second.href, plain(second.said[0])[:24]) == ("", "No edition of it stands.")
+    assert (second.href, plain(second.said[0])[:25]) == ("", "It has no edition yet. Up")
     assert [row.cells[0] for row in built.table("collections").rows] == ["isle", "saltmarsh"]
 
 

@@ -23,9 +23,22 @@ def test_elsewhere_there_is_no_such_way(asked: str, status: int) -> None:
     assert error.build(a_problem(asked, status)).lead == ()
 
 
+@pytest.mark.parametrize(
+    ("asked", "form"),
+    [
+        ("/uploads", "/uploads/new"),
+        ("/uploads/7/reading", "/uploads/7/reading"),
+        ("/uploads/7/commit", "/uploads/7/problems"),
+    ],
+)
+def test_from_a_form_that_was_refused_back_to_it(asked: str, form: str) -> None:
+    (lead,) = error.build(a_problem(asked, 422)).lead
+    assert [piece.href for piece in lead if piece.href] == [form]
+
+
 def test_everything_said_is_on_the_page_and_in_the_notice_beside_one() -> None:
     page = error.build(a_problem("/x"))
     assert plain(page.answer) == "There is no edition 7."
     assert page.reference == "Problem 404, request 1234-abcd."
     assert page.errors == ("a", "b")
-    assert plain(page.alert.text) == "There is no edition 7. a b"
+    assert plain(page.alert.text).startswith("There is no edition 7. a b What stands below")

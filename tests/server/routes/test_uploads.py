@@ -114,7 +114,7 @@ def test_what_is_wrong_is_told_row_by_row_and_nothing_becomes_of_it(blank: TestC
     answer = blank.post(f"{place}/commit", data={"note": "all the same"})
     assert answer.status_code == 409
     assert "has 1 errors and cannot become an edition" in answer.text
-    assert blank.get("/c/dk").status_code == 404
+    assert "has no edition yet" in blank.get("/c/dk/editions").text
 
     corrected = {"file": ("better.csv", DENMARK.read_bytes(), "text/csv")}
     answer = blank.post(f"{place}/files", data={"role": "counts"}, files=corrected)
