@@ -13,7 +13,14 @@ from server.results.loading import NotInEdition, holdings, load, overlap, shared
 from server.results.questions import PopulationYear
 from server.store.connect import Session
 from server.store.records import Area
-from tests.factories import GRIDS, edition, gompertz_panel
+from tests.factories import (
+    GRIDS,
+    cells,
+    edition,
+    gompertz_panel,
+    stored_collection,
+    stored_edition,
+)
 
 FIVE = GRIDS["abridged"]
 SHORT = AgeGrid(FIVE.starts[: FIVE.position(85) + 1])
@@ -71,6 +78,22 @@ def test_persons_whose_sexes_are_not_known_take_the_plain_mean(session: Session)
     edition(session, {"north.p.2014": gompertz_panel(sex="p")})
     loaded = load(session, "isle", 1, [of("north.p.2014")])[of("north.p.2014")]
     assert_array_equal(loaded.panel.infant_weight, [0.5, 0.5])
+
+
+@pytest.mark.parametrize("measure", ["deaths", "person_years"])
+@pytest.mark.parametrize("sex", ["f", "m"])
+def test_what_is_provisional_in_part_is_provisional(
+    session: Session, measure: str, sex: str
+) -> None:
+    """Persons, who are summed from the sexes here, too."""
+    stored_collection(session)
+    final = cells()
+    changed = cells(sexes=sex, measures=(measure,), status="provisional")
+    stored_edition(session, final | changed)
+    wanted = [of(f"a.{one}.2001") for one in "fmp"]
+    loaded = load(session, "saltmarsh", 1, wanted)
+    status = {one.sex: loaded[one].status for one in wanted}
+    assert status == {"f": "final", "m": "final"} | {sex: "provisional", "p": "provisional"}
 
 
 def test_a_whole_is_on_the_grid_its_parts_share(isle: Session) -> None:

@@ -123,6 +123,12 @@ def test_a_newer_edition_is_measured_by_the_newest_figure(
     assert found.moved.value != found.estimate.value[0, -1]
 
 
+def test_the_newest_figure_may_be_of_an_earlier_year_than_the_last(isle: Session) -> None:
+    found = asked(isle, sexes=("m",), last="2003")
+    assert found.periods[-1] == "2003"
+    assert found.headline == PopulationYear("north", "m", "2002")
+
+
 def test_where_no_year_has_a_figure_the_last_one_asked_for_is_its_headline(isle: Session) -> None:
     edition(isle, {"north.f.2001": gompertz_panel(people=3e6, seed=70)})
     found = asked(isle, of="e3")
