@@ -120,7 +120,12 @@ def lead(found: Contents) -> tuple[Sentence, ...]:
     by_sex = [
         (line[1], newest.estimate[at, 0]) for at, line in enumerate(newest.lines) if line[0] == area
     ]
-    said = say.newest(found.holdings.name(area), newest.periods[0], by_sex)
+    provisional = any(
+        newest.status[at][0] == "provisional"
+        for at, line in enumerate(newest.lines)
+        if line[0] == area
+    )
+    said = say.newest(found.holdings.name(area), newest.periods[0], by_sex, provisional=provisional)
     return (said,) if said else ()
 
 

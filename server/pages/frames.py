@@ -80,7 +80,13 @@ def notices(
     out = []
     if heading.edition.withdrawn:
         event = heading.edition.events[-1]
-        text = standing.withdrawn(heading.edition.number, event.at, event.note)
+        instead = None
+        if heading.newest is not None:
+            instead = Piece(
+                _("Edition {number}", number=heading.newest),
+                address(heading.collection.code, heading.newest, question),
+            )
+        text = standing.withdrawn(heading.edition.number, event.at, event.note, instead)
         out.append(Notice(_("Withdrawn"), text))
     if moved is not None and headline is not None:
         newer = Piece(

@@ -45,7 +45,9 @@ def span(periods: Sequence[str]) -> str:
     )
 
 
-def newest(area: str, period: str, by_sex: Sequence[tuple[str, Estimate]]) -> Sentence:
+def newest(
+    area: str, period: str, by_sex: Sequence[tuple[str, Estimate]], *, provisional: bool
+) -> Sentence:
     """Life expectancy of the first area in its newest year; empty where there is none."""
     unit = INDICATORS["e0"].unit
     known = [(sex, one) for sex, one in by_sex if math.isfinite(float(one.value))]
@@ -55,8 +57,13 @@ def newest(area: str, period: str, by_sex: Sequence[tuple[str, Estimate]]) -> Se
         _("{value}\N{NO-BREAK SPACE}years for {sex}", value=shown(one, unit), sex=names.sex(sex))
         for sex, one in known
     ]
+    text = (
+        _("In {year} life expectancy at birth in {area} was {parts} (provisional).")
+        if provisional
+        else _("In {year} life expectancy at birth in {area} was {parts}.")
+    )
     return phrase(
-        _("In {year} life expectancy at birth in {area} was {parts}."),
+        text,
         year=period,
         area=area,
         parts=names.listed(parts),

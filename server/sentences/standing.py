@@ -40,7 +40,7 @@ def superseded(shown: int, newer: Piece, headline: Headline) -> Sentence:
         "there": number(there, decimals),
     }
     if moved == number(0, decimals):
-        return phrase(_("{stays} {newer} gives the same here. {label}: {there}."), **values)
+        return phrase(_("{stays} {newer} gives the same here ({label}: {there})."), **values)
     text = (
         _("{stays} {newer} gives {moved} more here. {label}: {there} there, {here} on this page.")
         if there > here
@@ -51,8 +51,9 @@ def superseded(shown: int, newer: Piece, headline: Headline) -> Sentence:
     return phrase(text, moved=moved, **values)
 
 
-def withdrawn(number: int, when: dt.date, note: str) -> Sentence:
-    """The edition no longer stands; what it said can still be read."""
+def withdrawn(number: int, when: dt.date, note: str, instead: Piece | None) -> Sentence:
+    """The edition no longer stands; what it said can still be read. `instead` is the one that
+    stands, if one does."""
     text = (
         _(
             "Edition {number} was withdrawn on {day}: {note} Its figures can still be read here,"
@@ -64,7 +65,13 @@ def withdrawn(number: int, when: dt.date, note: str) -> Sentence:
             " what was said of them can be followed."
         )
     )
-    return phrase(text, number=str(number), day=day(when), note=_ended(note))
+    said = phrase(text, number=str(number), day=day(when), note=_ended(note))
+    now = (
+        phrase(_("{edition} stands now."), edition=instead)
+        if instead
+        else phrase(_("No edition stands now."))
+    )
+    return (*said, Piece(" "), *now)
 
 
 def _ended(note: str) -> str:

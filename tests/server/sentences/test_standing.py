@@ -17,7 +17,7 @@ NEWER = Piece("Edition 4 of 2 September 2014", "/there")
     [
         ("e0", 82.03, 82.05, "gives 0.02 more here. Figure: 82.05 there, 82.03 on this page."),
         ("e0", 82.03, 81.9, "gives 0.13 less here. Figure: 81.90 there, 82.03 on this page."),
-        ("e0", 82.03, 82.0301, "gives the same here. Figure: 82.03."),
+        ("e0", 82.03, 82.0301, "gives the same here (Figure: 82.03)."),
         ("ageing_rate", 0.1, 0.101, "gives 0.10 more here. Figure: 10.10 there, 10.00 on"),
         ("e0", 82.03, np.nan, "has no figure to set beside this one."),
     ],
@@ -33,8 +33,11 @@ def test_by_how_much_a_newer_edition_moves_the_headline(
 
 def test_a_withdrawn_edition_can_still_be_read() -> None:
     when = dt.date(2013, 6, 3)
-    said = plain(withdrawn(2, when, "wrong population base "))
+    said = plain(withdrawn(2, when, "wrong population base ", None))
     assert said.replace("\N{NO-BREAK SPACE}", " ").startswith(
         "Edition 2 was withdrawn on 3 June 2013: wrong population base. Its figures can still"
     )
-    assert ": " not in plain(withdrawn(2, when, "  "))
+    assert said.endswith("No edition stands now.")
+    other = withdrawn(2, when, "  ", NEWER)
+    assert ": " not in plain(other)
+    assert NEWER in other
