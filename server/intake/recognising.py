@@ -31,6 +31,7 @@ ONLY_NUMBER = "it is the only column of numbers left"
 RATE = "a rate: rates are worked out from the counts"
 TAKEN = "another column was taken for the same"
 NOT_NEEDED = "nothing in this kind of file needs it"
+OTHER_COUNT = "another kind of count than this file was handed in for"
 UNKNOWN = "neither its heading nor its values are known"
 
 
@@ -127,7 +128,10 @@ def _last_number(reading: Reading, role: str, found: dict[str, Recognised]) -> N
     numbers = [
         column
         for column in reading.columns
-        if column not in found and not _is_rate(column) and _all(_number)(reading.values(column))
+        if column not in found
+        and not _is_rate(column)
+        and not _by_heading(column, COLUMNS)  # it says itself that it is something else
+        and _all(_number)(reading.values(column))
     ]
     named = [column for column in numbers if _plain(column) in COUNTS] or numbers
     if len(wanted) == 1 and len(named) == 1:
@@ -140,10 +144,13 @@ def _is_rate(column: str) -> bool:
 
 
 def _unused(column: str, fields: tuple[str, ...]) -> Recognised:
+    says = _by_heading(column, COLUMNS)
     if _is_rate(column):
         why = RATE
+    elif says in ("", *fields):
+        why = UNKNOWN
     else:
-        why = NOT_NEEDED if _by_heading(column, COLUMNS) not in ("", *fields) else UNKNOWN
+        why = OTHER_COUNT if says in ("deaths", "population", "births") else NOT_NEEDED
     return Recognised(column, "", "not used", why)
 
 

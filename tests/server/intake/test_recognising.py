@@ -58,7 +58,12 @@ def test_a_second_column_for_the_same_is_not_used() -> None:
 
 def test_columns_of_another_kind_of_file_are_not_needed() -> None:
     found = recognised(b"year,sex,age,deaths,population\n1974,f,0,3,9\n", "population")
-    assert (found["deaths"].field, found["deaths"].why) == ("", recognising.NOT_NEEDED)
+    assert (found["deaths"].field, found["deaths"].why) == ("", recognising.OTHER_COUNT)
+
+
+def test_a_count_that_says_what_it_is_is_not_taken_for_another() -> None:
+    found = recognised(b"year,sex,age,person_years\n1974,f,0,34382.8\n", "deaths")["person_years"]
+    assert (found.field, found.why) == ("", recognising.OTHER_COUNT)
 
 
 def test_births_have_no_age() -> None:
