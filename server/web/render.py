@@ -75,7 +75,7 @@ def respond(
     """
     web = of(request)
     asked = asked_block(request) if form == "html" else ""
-    place = (request.url.path, request.url.query, form, table, asked)
+    place = (request.url.path, request.url.query, asked)
     tag = etag((*place, *tag_parts, web.build.digest, web.language()))
     headers = {"ETag": tag, "Cache-Control": PINNED, "Vary": VARY}
     if fresh(request.headers.get("if-none-match"), tag):

@@ -1,9 +1,13 @@
 """Pages and twins: sent once, known again, whole or in part."""
 
+from dataclasses import replace
+from pathlib import Path
+
 import orjson
 import pytest
 from starlette.testclient import TestClient
 
+from server.web.build import Build
 from server.web.etag import Bodies, Body, etag, fresh
 from server.web.templating import json_block, of_table, symbols
 from tests.server.web.site import Site, application, browser
@@ -39,6 +43,16 @@ def test_the_tag_follows_state_address_block_and_form(reader: TestClient, site: 
     site.state = "2"
     tags.append(reader.get("/small?of=e0").headers["etag"])
     assert len(set(tags)) == len(tags)
+
+
+def test_the_tag_follows_language_and_build(tmp_path: Path) -> None:
+    apps = [application(Site(), tmp_path, language=code) for code in ("en", "pseudo", "en")]
+    apps[2].state.web = replace(apps[2].state.web, build=Build("0.1.0", "another", "static"))
+    tags = set()
+    for app in apps:
+        with browser(app) as client:
+            tags.add(client.head("/small?of=e0").headers["etag"])
+    assert len(tags) == len(apps)
 
 
 def test_the_tag_is_the_same_in_another_process(tmp_path_factory: pytest.TempPathFactory) -> None:
