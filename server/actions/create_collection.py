@@ -18,6 +18,11 @@ def create_collection(
     Raises: NotAllowed; Taken; Refused where code, name or owner cannot be used.
     """
     by.require(Right.ADMINISTER)
+    if not code:
+        raise Refused(
+            "A new collection needs a code, which becomes part of every address. Choose a short "
+            "one such as 'saltmarsh'."
+        )
     # '.' and '..' would be taken for folders by whoever follows the address
     if not re.fullmatch(r"[A-Za-z0-9_.-]{1,32}", code) or not code.strip("."):
         raise Refused(

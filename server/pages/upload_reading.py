@@ -65,6 +65,8 @@ class UploadReadingPage(Page):
 
     template: ClassVar[str] = "upload_reading/page.html"
     place: str
+    collection: str  # code
+    readable: bool  # all files are tables, so that there is something to ask
     files: tuple[FileReading, ...]
     asked: Asked
 
@@ -80,6 +82,7 @@ def build(session: Session, upload_id: int) -> UploadReadingPage:
     known = [_known(file, reading, before) for file, reading in looked]
     standing = editions.newest_standing(session, upload.collection)
     collection = collections.find(session, upload.collection)
+    unreadable = [file.name for file, reading in looked if reading.problems]
     return UploadReadingPage(
         frame=Frame(
             title=_("How the files are read"),
@@ -88,9 +91,11 @@ def build(session: Session, upload_id: int) -> UploadReadingPage:
             shown=_("Not an edition"),
             nav="upload",
         ),
-        answer=say.answer(len(upload.files)),
+        answer=say.unreadable(unreadable) if unreadable else say.answer(len(upload.files)),
         tables=tuple(_rows(file, reading) for file, reading in looked),
         place=f"/uploads/{upload.id}",
+        collection=collection.code,
+        readable=not unreadable,
         files=tuple(
             _file(file, reading, mapping)
             for (file, reading), mapping in zip(looked, known, strict=True)

@@ -44,13 +44,25 @@ def answer(files: int) -> Sentence:
     )
 
 
+def unreadable(files: list[str]) -> Sentence:
+    """Instead, where some of the files are no tables."""
+    return phrase(
+        n_(
+            "{files} cannot be read as it stands. Put it right and upload it again.",
+            "{files} cannot be read as they stand. Put them right and upload them again.",
+            len(files),
+            files=names.listed(files),
+        )
+    )
+
+
 def file_line(code: str, name: str, rows: int, delimiter: str, encoding: str) -> str:
     """One file: what it is, its name and how it is written."""
     return _(
-        "{role}: {name}, {rows} rows, columns parted by {delimiter}, {encoding}",
+        "{role}: {name}, {rows}, columns parted by {delimiter}, {encoding}",
         role=role(code),
         name=name,
-        rows=whole(rows),
+        rows=n_("one row", "{count} rows", rows, count=whole(rows)),
         delimiter=_(delimiter),
         encoding=encoding,
     )

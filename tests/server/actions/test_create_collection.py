@@ -23,11 +23,16 @@ def test_a_collection_is_opened_once(session: Session) -> None:
         create(session, "saltmarsh")
 
 
-@pytest.mark.parametrize("code", ["", "two words", "a/b", "é", "x" * 33, ".", "..", "a\n"])
+@pytest.mark.parametrize("code", ["two words", "a/b", "é", "x" * 33, ".", "..", "a\n"])
 def test_a_code_that_cannot_stand_in_an_address_is_refused(session: Session, code: str) -> None:
     with pytest.raises(Refused, match="expected 1 to 32 of the letters a to z"):
         create(session, code)
     assert collections.all_collections(session) == ()
+
+
+def test_a_new_collection_needs_a_code(session: Session) -> None:
+    with pytest.raises(Refused, match="needs a code"):
+        create(session, "")
 
 
 @pytest.mark.parametrize("code", ["A.b_c-9", "x" * 32, "..a"])

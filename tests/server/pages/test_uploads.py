@@ -45,6 +45,12 @@ def test_columns_are_proposed_with_how_sure_that_is(salt: Session) -> None:
     assert plain(built.answer).startswith("The file was read.")
 
 
+def test_a_file_that_is_no_table_is_not_said_to_be_read(salt: Session) -> None:
+    built = upload_reading.build(salt, received(salt, b""))
+    assert plain(built.answer).startswith("deaths.csv cannot be read as it stands.")
+    assert not built.readable
+
+
 def test_what_was_stated_for_a_file_goes_before_its_headings(salt: Session) -> None:
     upload = checked_upload(salt, counts_csv(), mapping=Mapping(year="age", whole="isle"))
     built = upload_reading.build(salt, upload.id)

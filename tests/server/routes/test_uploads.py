@@ -254,7 +254,7 @@ def test_answers_that_are_missing_are_named(
 @pytest.mark.parametrize(
     ("content", "words"),
     [
-        (b"", "nothing"),
+        (b"", "found an empty file"),
         (b"PK\x03\x04 not a text", "spreadsheet"),
         (b"year,sex\n", "row"),
     ],
