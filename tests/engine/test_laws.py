@@ -58,6 +58,16 @@ def test_a_general_optimiser_finds_the_same(law: Law, seed: int) -> None:
 
 @pytest.mark.fast
 @BOTH
+def test_steep_laws_are_found_too(law: Law) -> None:
+    """Newton's own steps would run away from some of these."""
+    levels, slopes = np.repeat([-6.0, -4.0, -2.0], 3), np.tile([0.1, 0.3, 0.4], 3)
+    exposure = 1e4 * np.exp(-(((AGES - 70) / 12) ** 2))
+    deaths = law.hazard(levels[:, None] + slopes[:, None] * (AGES - 85)) * exposure
+    np.testing.assert_allclose(fit(law, AGES, deaths, exposure).slope, slopes, rtol=1e-9)
+
+
+@pytest.mark.fast
+@BOTH
 def test_each_population_is_fitted_for_itself(law: Law) -> None:
     """Bit for bit, though small and large ones need different numbers of steps."""
     deaths, exposure = counts(law, 1, batch=(40,))

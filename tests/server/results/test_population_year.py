@@ -58,8 +58,10 @@ def test_figures_are_the_estimates_of_the_counts(isle: Session) -> None:
     for key in USUAL:
         alone = indicators.estimate(indicators.find(key), PANELS["2014"], PLAIN, streams=codes)
         assert_allclose(found.estimates[key].value, alone.value, rtol=1e-9)
-        assert_allclose(found.estimates[key].low, alone.low, rtol=1e-3)
-    assert_allclose(found.rises.value, rises(PANELS["2014"]).value)
+        assert_allclose(found.estimates[key].low, alone.low, rtol=1e-6)
+    k = rises(PANELS["2014"], level=PLAIN.level)
+    for part in ("value", "low", "high"):
+        assert_allclose(getattr(found.rises, part), getattr(k, part), rtol=1e-6)
     assert found.readable
     assert found.gainful
     total = float(100 * found.gain.sum())  # e-dagger, but for the rule of the first year
@@ -74,6 +76,20 @@ def test_the_change_is_this_year_less_the_one_before(isle: Session) -> None:
         values = (indicators.find(key).value(run(PANELS[year], PLAIN)) for year in ("2014", "2013"))
         assert_allclose(before.change[key].value, np.subtract(*values), rtol=1e-6)
         assert before.change[key].low < before.change[key].value < before.change[key].high
+
+
+def test_what_is_simulated_of_the_change_goes_by_the_codes_of_both_years(isle: Session) -> None:
+    found = asked(isle, "2014")
+    assert found.before is not None
+    median = indicators.difference(
+        indicators.find("median"),
+        PANELS["2014"],
+        PANELS["2013"],
+        PLAIN,
+        streams=(stream("isle", found.of), stream("isle", found.before.of)),
+    )
+    assert_allclose(found.before.change["median"].low, median.low, rtol=1e-6)
+    assert_allclose(found.before.change["median"].high, median.high, rtol=1e-6)
 
 
 def test_a_year_before_on_other_ages_is_compared_on_those_both_have(isle: Session) -> None:
