@@ -17,17 +17,24 @@ from tests import postgres
 BOTH = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgres)]
 _NUMBERS = count(1)
 
-# files of tests that take five seconds or more together: the working loop leaves them out
+# files of tests that take seconds together, by measure: the working loop leaves them out
 SLOW = {
     "tests/house/test_pages.py",
+    "tests/house/test_readme.py",
     "tests/server/actions/test_rebuild_editions.py",
     "tests/server/cli/test_editions.py",
+    "tests/server/cli/test_figure.py",
+    "tests/server/intake/test_fuzz.py",
     "tests/server/pages/test_comparison.py",
+    "tests/server/pages/test_population_year.py",
     "tests/server/results/test_comparison.py",
+    "tests/server/routes/test_addresses.py",
     "tests/server/routes/test_population_year.py",
     "tests/server/routes/test_statements.py",
+    "tests/server/routes/test_strange_names.py",
     "tests/server/routes/test_uploads.py",
     "tests/server/store/test_histories.py",
+    "tests/server/web/test_guard.py",
 }
 
 
