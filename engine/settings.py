@@ -48,7 +48,11 @@ RATES = (
     "below it: both take the rate of the two together."
 )
 OPEN_INTERVAL = {
-    "one_over_m": "Those who reach the open age group live on for 1 / m years on average.",
+    "one_over_m": (
+        "Those who reach the open age group live on for 1 / m years on average. Where the group "
+        "begins at 85 this can make life expectancy at birth 0.2 of a year too long, at 80 0.6 of "
+        "a year, at 75 more than a year."
+    ),
     "gompertz": (
         "Above the open age a Gompertz law takes the place of the data: fitted by Poisson "
         "likelihood to the closed groups from age {age}, it is read in single years up to 130."

@@ -18,6 +18,7 @@ from engine.indicators import find as find_indicator
 from engine.panel import Panel
 from engine.settings import find
 from engine.tables import LifeTable
+from tests.published import denmark
 
 MODES, SLOPES = np.array([82.0, 86.0, 90.0]), np.array([0.0938, 0.0975, 0.105])
 TRUE, CLOSED = (10.62, 10.24, 9.52), (11.02, 11.11, 11.24)
@@ -89,6 +90,24 @@ def test_another_law_than_the_true_one_errs_but_keeps_the_trend() -> None:
     assert (np.diff(found) < -0.3).all()
     assert (found - TRUE > 0.1).all()
     assert (found - TRUE < 0.35).all()
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize(
+    ("open_age", "least", "most"), [(95, 0, 0.01), (85, 0.15, 0.2), (80, 0.5, 0.6), (75, 1, 1.3)]
+)
+def test_closing_low_lengthens_life_by_what_the_settings_say(
+    open_age: int, least: float, most: float
+) -> None:
+    """Danish women and men through 39 years, against the same counts to 99+: what an open group
+    holds is no stationary population."""
+    grid, plain = AgeGrid(tuple(range(open_age + 1))), find("almanac-1")
+    longer = [
+        run(panel.regroup(grid), plain).table.ex[:, 0] - run(panel, plain).table.ex[:, 0]
+        for panel in map(denmark.panel, denmark.SEXES)
+    ]
+    assert least <= np.max(longer) <= most
+    assert np.min(longer) > -0.001
 
 
 @pytest.mark.fast
