@@ -8,6 +8,8 @@ from scipy.special import betaincinv
 from engine.ages import AgeGrid, Array
 from engine.panel import Panel
 
+STEPS = 40  # Newton's double the digits; so many leave room for those held back
+
 
 @dataclass(frozen=True, slots=True)
 class Slope:
@@ -53,9 +55,7 @@ def slope(grid: AgeGrid, mx: Array, exposure: Array, span: tuple[int, int]) -> S
     with np.errstate(all="ignore"):
         observed = (deaths * x).sum(axis=-1) / total
         b = np.full(total.shape, 0.1, mx.dtype)
-        for _ in range(
-            40
-        ):  # Newton's steps double the digits; 40 leave room for the held-back ones
+        for _ in range(STEPS):
             weight = years * np.exp(b[..., None] * x)
             share = weight / weight.sum(axis=-1, keepdims=True)
             mean = (share * x).sum(axis=-1)

@@ -207,9 +207,8 @@ class _Line:
         """What the value jumps by as m0 moves through the break of a first-year rule, [...]."""
         after = np.concatenate([cuts.at[1:], np.ones_like(cuts.at[:1])])
         direction = np.sign(self.step[..., 0])
-        crossed = (cuts.at < after) & (
-            cuts.toward == direction
-        )  # of equal cuts the last one counts
+        # of equal cuts the last one counts
+        crossed = (cuts.at < after) & (cuts.toward == direction)
         if not crossed.any():
             return np.zeros(cuts.at.shape[1:])
         above, below = (
