@@ -98,10 +98,6 @@ def _frame(found: Comparison) -> Frame:
         headline = Headline(
             label, asked.indicator.unit, float(asked.difference.value), found.moved.value
         )
-    exchange = Piece(
-        _("exchange them"),
-        address(heading.collection.code, heading.edition.number, question.exchanged()),
-    )
     return frames.pinned(
         heading,
         question,
@@ -109,10 +105,9 @@ def _frame(found: Comparison) -> Frame:
             _("{this} against {that}", this=both.this.whole, that=both.that.whole)
         ),
         place=phrase(
-            _("{this} against {that}; {exchange}"),
+            _("{this} against {that}"),
             this=_linked(found, question.this, both.this.whole),
             that=_linked(found, question.that, both.that.whole),
-            exchange=exchange,
         ),
         figures=question.figures,
         settings=question.settings,
@@ -192,12 +187,20 @@ def _why_not_parted(found: Comparison) -> str:
 
 
 def _further(found: Comparison) -> tuple[Sentence, ...]:
-    return tuple(
-        phrase(
-            _("{who}: the life table and its pictures"),
-            who=_linked(found, of, names.first_capital(tables.named(found, of).whole)),
-        )
-        for of in dict.fromkeys((found.question.this, found.question.that))
+    heading, question = found.heading, found.question
+    exchange = Piece(
+        _("Exchange the two"),
+        address(heading.collection.code, heading.edition.number, question.exchanged()),
+    )
+    return (
+        *(
+            phrase(
+                _("{who}: the life table and its pictures"),
+                who=_linked(found, of, names.first_capital(tables.named(found, of).whole)),
+            )
+            for of in dict.fromkeys((question.this, question.that))
+        ),
+        phrase(_("{exchange}: the same from the other side"), exchange=exchange),
     )
 
 
