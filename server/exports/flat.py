@@ -1,9 +1,9 @@
 """A table as plain rows of numbers and texts, the form CSV and XLSX share.
 
-The name behind a first cell that is a code stands beside it, as `<key>_name`. A gap leaves its cell
-empty and says its kind in a column of its own, `<key>_missing`; a second line under a first cell
-becomes `remark`; `provisional` is "yes" where a row's numbers are. These columns are there only
-where the table has something to put into them. A sum is the last row.
+A gap leaves its cell empty and says its kind in a column of its own, `<key>_missing`; a second line
+under a first cell becomes `remark`; `provisional` is "yes" where a row's numbers are. These columns
+are there only where the table has something to put into them. A sum is the last row. Names behind
+codes are left out: they may change under an address.
 """
 
 import math
@@ -35,9 +35,6 @@ def flat(table: Table) -> Flat:
         if any(isinstance(cell, Gap) for cell in cells):
             headings.append(f"{column.key}_missing")
             parts.append([cell.kind.value if isinstance(cell, Gap) else None for cell in cells])
-        if index == 0 and any(row.shown for row in rows):
-            headings.append(f"{column.key}_name")
-            parts.append([row.shown for row in rows])
     if any(row.second for row in rows):
         headings.append("remark")
         parts.append([row.second for row in rows])

@@ -15,7 +15,7 @@ from openpyxl.cell.cell import Cell
 from openpyxl.styles import Alignment, Font
 from openpyxl.worksheet.worksheet import Worksheet
 
-from server.exports.flat import Plain, flat
+from server.exports.flat import Plain, flat, plain
 from server.exports.twin import Twin
 
 MEDIA_TYPE = "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet"
@@ -56,6 +56,9 @@ def _about(twin: Twin) -> Iterable[tuple[Plain, ...]]:
         for column in table.columns:
             group = f"{column.span}, " if column.span else ""
             yield "column", column.key, f"{group}{column.label}", column.unit or None
+        for row in table.rows:
+            if row.shown:
+                yield "name", plain(row.cells[0], table, table.columns[0]), row.shown
 
 
 def _fill(sheet: Worksheet, rows: Iterable[tuple[Plain, ...]], *, bold: int) -> None:

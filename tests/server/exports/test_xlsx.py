@@ -9,7 +9,7 @@ from openpyxl.workbook import Workbook
 
 from server.exports import xlsx
 from server.exports.table import Column, Row, Table
-from tests.server.exports.tables import a_twin
+from tests.server.exports.tables import NAMED, a_twin
 
 
 def opened(content: bytes) -> Workbook:
@@ -33,6 +33,12 @@ def test_the_first_sheet_says_what_the_file_is() -> None:
     assert said["Edition"] == "x, edition 1"
     assert said["Withdrawn"] == "It was withdrawn."
     assert ("column", "e0", "Saltmarsh, women", "years") in set(book["about"].values)
+
+
+def test_names_behind_codes_stand_on_the_first_sheet() -> None:
+    book = opened(xlsx.write(a_twin(NAMED)))
+    assert ("name", "st.john", "St John") in set(book["about"].values)
+    assert next(book["areas"].values) == ("area", "e0", "e0_missing")
 
 
 def test_equal_content_gives_equal_bytes_at_any_time() -> None:
