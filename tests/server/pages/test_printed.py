@@ -33,6 +33,16 @@ def test_limits_stand_under_their_number_and_shared_heads_over_their_columns() -
     assert table.widest == 3
 
 
+def test_limits_of_a_difference_have_their_signs() -> None:
+    columns = (
+        Column("d", "difference", decimals=1, signed=True),
+        Column("d_low", "low", decimals=1, signed=True, under="d"),
+        Column("d_high", "high", decimals=1, signed=True, under="d"),
+    )
+    (row,) = printed(Table("t", "t", columns, (Row((0.3, -0.2, 0.8)),))).rows
+    assert (row.cells[0].text, row.cells[0].under) == ("+0.3", f"{MINUS}0.2 to +0.8")
+
+
 def test_without_shared_heads_there_is_one_line_of_heads() -> None:
     table = printed(Table("t", "t", COLUMNS[:1], (Row((2012,)),)))
     assert [len(line) for line in table.heads] == [1]

@@ -97,3 +97,14 @@ def test_a_twin_without_an_edition_leads_to_that_of_the_newest(
     place = reader.get(f"/c/isle/{view}.json").headers["location"]
     assert place.startswith(f"/c/isle/1/{view}.json?")
     assert reader.get(place).status_code == 200
+
+
+def test_what_a_trend_leaves_open_begins_with_the_whole(sqlite_url: str) -> None:
+    engine = make_engine(sqlite_url)
+    with sessions(engine)() as session:
+        panels = {f"{area}.f.2014": gompertz_panel() for area in ("north", "south")}
+        edition(session, panels, parents=dict.fromkeys(("north", "south"), "whole"))
+    engine.dispose()
+    with browser(create_app(Config(database_url=sqlite_url))) as reader:
+        pinned = reader.get("/c/isle/trend").headers["location"]
+    assert pinned == "/c/isle/1/trend?of=e0&area=whole&sex=f&from=2014&to=2014" + REST

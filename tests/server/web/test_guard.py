@@ -1,14 +1,16 @@
 """Who is answered, and with which headers."""
 
+import asyncio
 import logging
 from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
 from starlette.testclient import TestClient
+from starlette.types import Message
 
-from server.web.guard import FIXED
-from tests.server.web.site import Site, application, browser
+from server.web.guard import DRAINED, FIXED
+from tests.server.web.site import HERE, Site, application, browser
 
 SAME = {"Sec-Fetch-Site": "same-origin"}
 
@@ -114,19 +116,41 @@ def small_limit(tmp_path: Path) -> Iterator[TestClient]:
         yield client
 
 
-def chunks(size: int) -> Iterator[bytes]:
-    for _ in range(size // 100_000):
-        yield b"x" * 100_000
-
-
-@pytest.mark.parametrize("announced", [True, False])
-def test_a_body_above_the_limit_gets_a_sentence(small_limit: TestClient, announced: bool) -> None:
-    content = b"x" * 1_100_000 if announced else chunks(1_100_000)
-    answer = small_limit.post("/done", content=content, headers=SAME)
+def test_a_body_above_the_limit_gets_a_sentence(small_limit: TestClient) -> None:
+    answer = small_limit.post("/done", content=b"x" * 1_100_000, headers=SAME)
     assert answer.status_code == 413
     assert "What was sent is larger than 1 MB." in answer.text
-    fits = small_limit.post("/done", content=chunks(900_000), headers=SAME)
+    fits = small_limit.post("/done", content=b"x" * 900_000, headers=SAME)
     assert (fits.status_code, fits.text) == (200, "900000")
+
+
+@pytest.mark.parametrize(
+    ("parts", "status", "taken"),
+    [
+        (10, 200, 10),
+        (11, 413, 11),  # read to its end, so that a browser shows the answer
+        (50, 413, 50),
+        (200, 413, DRAINED * 10 + 1),  # but not for ever
+    ],
+)
+def test_a_body_in_parts_is_counted_as_it_comes(
+    tmp_path: Path, parts: int, status: int, taken: int
+) -> None:
+    left = [{"type": "http.request", "body": b"x" * 100, "more_body": True}] * (parts - 1)
+    left.append({"type": "http.request", "body": b"x" * 100, "more_body": False})
+    answered: list[Message] = []
+
+    async def receive() -> Message:
+        return left.pop(0)
+
+    async def send(message: Message) -> None:
+        answered.append(message)
+
+    scope = {"type": "http", "method": "POST", "path": "/done", "raw_path": b"/done"}
+    scope |= {"client": HERE, "headers": [(b"host", b"localhost")], "query_string": b""}
+    asyncio.run(application(Site(), tmp_path, upload_limit=1_000)(scope, receive, send))
+    assert [one["status"] for one in answered if "status" in one] == [status]
+    assert parts - len(left) == taken
 
 
 def test_a_fault_is_told_with_the_id_that_is_in_the_log(

@@ -43,6 +43,7 @@ def test_htmx_gets_a_notice_and_the_page_stays(reader: TestClient) -> None:
     answer = reader.get("/missing", headers={"HX-Request-Type": "partial", "HX-Target": "div#x"})
     assert answer.status_code == 404
     assert answer.headers["hx-retarget"] == "#notices"
+    assert answer.headers["hx-push-url"] == "false"  # the address bar keeps what is seen
     assert answer.text.startswith('<div class="notice" role="alert">')
     assert SENTENCE in answer.text
     assert "<html" not in answer.text
