@@ -50,8 +50,8 @@ RATES = (
 OPEN_INTERVAL = {
     "one_over_m": (
         "Those who reach the open age group live on for 1 / m years on average. Where the group "
-        "begins at 85 this can make life expectancy at birth 0.2 of a year too long, at 80 0.6 of "
-        "a year, at 75 more than a year."
+        "begins at 85 this can make life expectancy at birth too long by 0.2 of a year; where at "
+        "80, by 0.6 of a year; where at 75, by more than a year."
     ),
     "gompertz": (
         "Above the open age a Gompertz law takes the place of the data: fitted by Poisson "

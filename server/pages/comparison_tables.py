@@ -8,6 +8,7 @@ from engine.ages import Array
 from engine.indicators import find
 from server.exports.table import Cell, Column, Row, Table
 from server.pages.cells import columns, gap, number, triple
+from server.pages.population_year_tables import what_it_counts
 from server.results.comparison import DECOMPOSED, Comparison, Contribution, Side
 from server.results.questions import PopulationYear
 from server.sentences import comparison as say
@@ -60,7 +61,7 @@ def _figure_row(found: Comparison, key: str) -> Row:
         cells += triple(side, indicator.unit, found.settings)
     return Row(
         tuple(cells),
-        second=_(indicator.unit.label),
+        second=what_it_counts(key, found.settings),
         shown=_(indicator.label),
         decimals=indicator.unit.decimals,
     )

@@ -4,6 +4,7 @@ import numpy as np
 
 from engine.estimates import Estimate, Reason
 from engine.indicators import find
+from engine.settings import Settings
 from server.exports.table import Cell, Column, Gap, GapKind, Row, Table
 from server.pages.cells import columns, count, number, triple
 from server.results.estimating import USUAL
@@ -70,15 +71,15 @@ def _figure_row(found: Findings, key: str) -> Row:
         cells += triple(side, indicator.unit, found.settings)
     return Row(
         tuple(cells),
-        second=_second_line(key, found),
+        second=what_it_counts(key, found.settings),
         shown=_(indicator.label),
         decimals=indicator.unit.decimals,
     )
 
 
-def _second_line(key: str, found: Findings) -> str:
+def what_it_counts(key: str, settings: Settings) -> str:
     """What the number counts, under its name."""
-    first, last = found.settings.ageing_span
+    first, last = settings.ageing_span
     return {
         "e65": _("years still to live"),
         "median": _("age that half would reach"),

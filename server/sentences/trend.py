@@ -70,7 +70,7 @@ def answer(course: Course | None, label: str, who: str) -> Sentence:
     if course is None:
         return phrase(
             _(
-                "{label} of {who} cannot be followed through these years: fewer than two of them"
+                "{label} among {who} cannot be followed through these years: fewer than two of them"
                 " have a figure."
             ),
             label=label,
@@ -86,8 +86,8 @@ def answer(course: Course | None, label: str, who: str) -> Sentence:
     if course.kind is Movement.WITHOUT_INTERVAL:
         return phrase(
             _(
-                "{Label} of {who}: {here} in {last}, {there} in {first}; how much of that is chance"
-                " is not known."
+                "{Label} among {who}: {here} in {last}, {there} in {first}; how much of that is"
+                " chance is not known."
             ),
             Label=label,
             here=shown(course.at_last, unit),
@@ -97,7 +97,7 @@ def answer(course: Course | None, label: str, who: str) -> Sentence:
     if course.kind not in CLEAR:
         return phrase(
             _(
-                "No clear change in {label} of {who} between {first} and {last}:"
+                "No clear change in {label} among {who} between {first} and {last}:"
                 " {value} {interval}."
             ),
             value=course.signed(course.change),
@@ -120,9 +120,9 @@ def answer(course: Course | None, label: str, who: str) -> Sentence:
         )
         return phrase(text, **parts)
     text = (
-        _("{Label} of {who} rose by {amount} between {first} and {last} {interval}.")
+        _("{Label} among {who} rose by {amount} between {first} and {last} {interval}.")
         if course.change.value > 0
-        else _("{Label} of {who} fell by {amount} between {first} and {last} {interval}.")
+        else _("{Label} among {who} fell by {amount} between {first} and {last} {interval}.")
     )
     return phrase(text, Label=label, **{**parts, "who": course.who})
 

@@ -47,8 +47,8 @@ def test_a_gain_and_how_it_was_spread() -> None:
 def test_other_indicators_rise_and_fall() -> None:
     said = words(say.answer(course(estimate(-0.01, -0.02, -0.005), "H"), "Unevenness", ""))
     assert (
-        said
-        == "Unevenness of women of Northlade fell by 0.010 between 1995 and 2012 (0.005 to 0.020)."
+        said == "Unevenness among women of Northlade fell by 0.010 between 1995 and 2012 (0.005 to"
+        " 0.020)."
     )
 
 
