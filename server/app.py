@@ -36,7 +36,7 @@ from server.web.problem import Problem, Refusal
 from server.web.render import PASSING, Web, redirect
 from server.web.static import Static, asset
 
-# error class -> status and title; the error's own text is the page's answer. First match counts.
+# error class -> status and title; the error's own text is the answer. The nearest class counts.
 ERRORS: tuple[tuple[type[Exception], int, str], ...] = (
     (BadAddress, 400, "This address cannot be read"),
     (NotAllowed, 403, "Not allowed"),

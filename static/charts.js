@@ -92,7 +92,7 @@
 
   // A link to a table inside a closed fold opens the fold.
   function unfold(hash) {
-    const fold = hash.length > 1 && document.getElementById(decodeURIComponent(hash.slice(1)))?.closest("details");
+    const fold = document.getElementById(hash.slice(1))?.closest("details");  // our ids are plain letters
     if (fold) fold.open = true;
   }
   const offerPictures = () => document.querySelectorAll("a[data-picture][hidden]").forEach(link => { link.hidden = false; });

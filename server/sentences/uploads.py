@@ -58,10 +58,8 @@ def became(files: Sequence[str], edition: Piece) -> Sentence:
 def outcome(errors: int, warnings: int, rows: int, sound: int) -> str:
     """The same for a terminal."""
     return _(
-        "{rows} rows were read; {sound} are sound. To be put right: {errors}; to be looked at "
-        "again: {warnings}.",
-        rows=whole(rows),
-        sound=whole(sound),
+        "{read} To be put right: {errors}; to be looked at again: {warnings}.",
+        read=_read(rows, sound),
         errors=whole(errors),
         warnings=whole(warnings),
     )
@@ -70,12 +68,22 @@ def outcome(errors: int, warnings: int, rows: int, sound: int) -> str:
 def read_rows(rows: int, sound: int, standing: int) -> Sentence:
     """What was read, and that nothing has happened to what stands (0: nothing does)."""
     text = (
-        _("{rows} rows were read; {sound} are sound. Nothing has changed: {edition} stands.")
+        _("{read} Nothing has changed: {edition} stands.")
         if standing
-        else _("{rows} rows were read; {sound} are sound. Nothing has been made of them yet.")
+        else _("{read} Nothing has been made of it yet.")
     )
     edition = _("edition {number}", number=standing)
-    return phrase(text, rows=whole(rows), sound=whole(sound), edition=edition)
+    return phrase(text, read=_read(rows, sound), edition=edition)
+
+
+def _read(rows: int, sound: int) -> str:
+    return n_(
+        "One row was read; {sound} is sound.",
+        "{rows} rows were read; {sound} are sound.",
+        rows,
+        rows=whole(rows),
+        sound=whole(sound),
+    )
 
 
 def holds(
