@@ -36,7 +36,7 @@ def run(asked: argparse.Namespace, config: Config) -> int:
     state, place = found(config)
     sentences = {
         "head": _("The database at {url} is up to date.", url=place),
-        "behind": _("The database at {url} was made by another version.", url=place),
+        "behind": _("The database at {url} was made by an older version.", url=place),
         "empty": _("There is no database yet at {url}.", url=place),
     }
     print(sentences[state])

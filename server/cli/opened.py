@@ -12,12 +12,21 @@ from server.store.migrating import schema_state
 
 def found(config: Config) -> tuple[str, str]:
     """State of the schema (head, behind, empty), and where it is, without a password. To look makes
-    no file."""
+    no file. Declined where a newer program made it."""
     if not config.database_url and not config.file.exists():
         return "empty", config.url
     engine = make_engine(config.url)
     state, place = schema_state(engine), str(engine.url)
     engine.dispose()
+    if state == "ahead":
+        raise Declined(
+            _(
+                "The database at {url} was made by a newer version than this one. Install that "
+                "version, or name another folder with --data.",
+                url=place,
+            ),
+            exit_code=1,
+        )
     return state, place
 
 
@@ -32,7 +41,7 @@ def require_head(config: Config) -> None:
     if state != "head":
         raise Declined(
             _(
-                "The database at {url} was made by another version. Bring it up to date: ebbline "
+                "The database at {url} was made by an older version. Bring it up to date: ebbline "
                 "database",
                 url=place,
             ),

@@ -18,8 +18,8 @@ def migrate(url: str) -> None:
     command.upgrade(configuration(url), "head")
 
 
-def schema_state(engine: Engine) -> Literal["head", "behind", "empty"]:
-    """Where the schema stands. One from a newer program counts as 'behind': it is not served.
+def schema_state(engine: Engine) -> Literal["head", "behind", "ahead", "empty"]:
+    """Where the schema stands; 'ahead' is one of a newer program, which this one does not know.
 
     Raises: Unreachable where there is no database at the address, or no answer from it.
     """
@@ -30,8 +30,10 @@ def schema_state(engine: Engine) -> Literal["head", "behind", "empty"]:
         raise Unreachable(str(engine.url), error.orig) from error
     if at is None:
         return "empty"
-    head = ScriptDirectory.from_config(configuration("")).get_current_head()
-    return "head" if at == head else "behind"
+    scripts = ScriptDirectory.from_config(configuration(""))
+    if at == scripts.get_current_head():
+        return "head"
+    return "behind" if at in {one.revision for one in scripts.walk_revisions()} else "ahead"
 
 
 def configuration(url: str) -> Config:

@@ -5,6 +5,7 @@ from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
+from sqlalchemy import create_engine, text
 
 from server.cli import main, parser
 from server.cli.refusals import REFUSALS
@@ -139,3 +140,20 @@ def test_the_address_that_is_printed_can_be_opened(
     assert main(["serve", "--data", str(tmp_path), "--port", "18431"]) == 0
     assert "Ebbline is at http://127.0.0.1:18431/ " in capsys.readouterr().out
     assert (given["host"], given["proxy_headers"]) == ("0.0.0.0", False)
+
+
+@pytest.mark.parametrize("words", [("database",), ("database", "--say"), ("editions",), ("demo",)])
+def test_a_database_of_a_newer_version_is_left_alone(
+    sqlite_url: str,
+    monkeypatch: pytest.MonkeyPatch,
+    capsys: pytest.CaptureFixture[str],
+    words: tuple[str, ...],
+) -> None:
+    engine = create_engine(sqlite_url)
+    with engine.begin() as connection:
+        connection.execute(text("UPDATE alembic_version SET version_num = 'of another day'"))
+    engine.dispose()
+    monkeypatch.setenv("EBBLINE_DATABASE_URL", sqlite_url)
+    monkeypatch.setenv("EBBLINE_PORT", "18433")
+    assert main(list(words)) == 1
+    assert "was made by a newer version than this one." in capsys.readouterr().err

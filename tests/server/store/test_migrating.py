@@ -24,10 +24,10 @@ def test_an_empty_database_is_brought_to_head(empty_url: str) -> None:
     engine.dispose()
 
 
-def test_a_database_of_another_version_is_behind(engine: Engine) -> None:
+def test_a_database_of_a_newer_version_is_ahead(engine: Engine) -> None:
     with engine.begin() as connection:
-        connection.execute(text("UPDATE alembic_version SET version_num = 'earlier'"))
-    assert schema_state(engine) == "behind"
+        connection.execute(text("UPDATE alembic_version SET version_num = 'later'"))
+    assert schema_state(engine) == "ahead"
 
 
 def test_models_and_migrations_agree(db_url: str) -> None:
