@@ -14,6 +14,7 @@
   const probes = { page: document.createElement("i"), paper: document.createElement("i") };
   const known = new Map();
   function colour(name, alpha, ground) {
+    if (ground === "print") return name === "ground" ? "#fff" : colour(name, alpha, "paper");  // the sheet is white
     const key = `${ground} ${name} ${alpha}`;
     if (!known.has(key)) {
       probes[ground].style.color = `var(--${name})`;
@@ -45,7 +46,7 @@
     const figure = figureOf(box);
     const width = onPaper ? PAPER : box.clientWidth;
     const over = onPaper ? figure.print : width < NARROW ? figure.narrow : {};
-    const ground = onPaper ? "paper" : "page";
+    const ground = onPaper ? "print" : "page";
     const layout = inked({ ...figure.layout, ...over }, ground);
     layout.width = width;
     layout.height = onPaper ? figure.print_height : box.clientHeight;

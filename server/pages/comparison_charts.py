@@ -88,7 +88,7 @@ def _curve(
     at = (
         At(age + 2, height, "left", 4, narrow_x=68, narrow_y=1.0 * RADIX)
         if upper
-        else At(age, height - 0.06 * RADIX, "right", -4)
+        else At(age, height - 0.09 * RADIX, "right", -4)
     )
     return Series(
         label,
@@ -114,8 +114,8 @@ def life_expectancy(found: Comparison, source: str) -> Chart | None:
         of="e0",
         finding=ages_say.by_age(asked(found, "e0"), span, carried),
         unit=_(
-            "Contribution of each age group to the difference in life expectancy at birth, {this}"
-            " less {that}, with {level} % intervals; hatched bars work against the rest",
+            "Years that each age group adds, {this} against {that}, with {level} % intervals;"
+            " hatched: against the rest",
             this=both.this.whole,
             that=both.that.whole,
             level=round(100 * found.settings.level),
@@ -145,8 +145,8 @@ def unevenness(found: Comparison, source: str) -> Chart | None:
             age,
         ),
         unit=_(
-            "Contribution of each age group to the difference in relative unevenness (H),"
-            " thousandths, with {level} % intervals; hatched bars work against the rest",
+            "Thousandths that each age group adds to relative unevenness (H), with {level} %"
+            " intervals; hatched: against the rest",
             level=round(100 * found.settings.level),
         ),
         title=_("thousandths of H"),
