@@ -16,7 +16,7 @@ from markupsafe import Markup, escape
 
 from server.paths import folder
 
-_SYMBOL = re.compile(r"\b([A-Za-z])_([a-z0-9]+)\b")
+_SYMBOL = re.compile(r"\b([A-Za-z])_x\b")  # and nothing else, since names of files have it too
 _IN_SCRIPT = {ord(sign): f"\\u{ord(sign):04x}" for sign in "<>&\u2028\u2029"}
 
 
@@ -90,7 +90,7 @@ def of_table(address: str, key: str) -> str:
 
 def symbols(text: str) -> Markup:
     """Text in which symbols such as m_x are set with the letter below the line."""
-    return Markup(_SYMBOL.sub(r"\1<sub>\2</sub>", str(escape(text))))
+    return Markup(_SYMBOL.sub(r"\1<sub>x</sub>", str(escape(text))))
 
 
 def json_block(value: object) -> Markup:

@@ -136,7 +136,8 @@ def test_a_redirect_spells_what_an_address_may_hold(reader: TestClient) -> None:
 
 def test_texts_are_escaped_and_symbols_set(reader: TestClient) -> None:
     assert symbols("m_x < 1 & l_x") == "m<sub>x</sub> &lt; 1 &amp; l<sub>x</sub>"
-    assert symbols("death_rate") == "death_rate"
+    for name in ("death_rate", "m_2020.csv", "c_max_x", "f_xy"):
+        assert symbols(name) == name
     assert json_block({"a": "</script>&"}) == '{"a":"\\u003c/script\\u003e\\u0026"}'
     assert of_table("/x.csv", "a") == "/x.csv?table=a"
     assert of_table("/x.csv?of=e0", "a") == "/x.csv?of=e0&table=a"
