@@ -1,6 +1,7 @@
 """`ebbline figure`: any indicator for areas, sexes and years."""
 
 import argparse
+import sys
 
 from engine.panel import SEXES
 from engine.settings import SETTINGS
@@ -10,11 +11,12 @@ from server.cli.tables import add_form, show
 from server.config import Config
 from server.exports.table import Column, Row, Table
 from server.exports.twin import Twin
-from server.pages import cells
+from server.pages import cells, frames
 from server.results.loading import Holdings, holdings
 from server.results.questions import DEFAULT_SETTINGS, TrendQuestion, address
 from server.results.series import Series, series
 from server.routes.asking import newest
+from server.sentences.pieces import plain
 from server.sentences.text import _
 from server.store.heading import Heading, heading
 
@@ -56,7 +58,10 @@ def run(asked: argparse.Namespace, config: Config) -> int:
         known = heading(session, asked.collection, number)
         held = holdings(session, asked.collection, number)
         found = [series(session, known, _question(asked, key, held)) for key in asked.indicator]
-    show(_twin(known, found), asked.form)
+    told = _twin(known, found)
+    for word, text in told.notices:
+        print(f"{word}. {text}", file=sys.stderr)
+    show(told, asked.form)
     return 0
 
 
@@ -94,7 +99,10 @@ def _twin(known: Heading, found: list[Series]) -> Twin:
         ),
         address=" ".join(address(collection.code, edition.number, one.question) for one in found),
         about=((_("Settings"), found[0].settings.key), (_("Content"), edition.digest)),
-        notices=(),
+        notices=tuple(
+            (notice.word, plain(notice.text))
+            for notice in frames.notices(known, found[0].question, None, None)
+        ),
         cautions=(),
         tables=(table,),
     )

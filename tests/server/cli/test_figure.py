@@ -76,6 +76,19 @@ def test_several_indicators_each_in_its_own_unit(ebbline: Ebbline, isle: str) ->
     assert len(told["address"].split()) == 3
 
 
+def test_a_withdrawn_edition_says_so_beside_its_figures(ebbline: Ebbline, isle: str) -> None:
+    asked = ("figure", "e0", "--collection", "isle", "--edition", "1", "--as", "json")
+    before = ebbline(*asked)
+    assert before.err == ""
+    withdraw = ("withdraw", "--collection", "isle", "--edition", "1", "--note", "Wrong file")
+    assert ebbline(*withdraw).code == 0
+    after = ebbline(*asked)
+    assert after.err.startswith("Withdrawn. Edition 1 was withdrawn on ")
+    told, was = json.loads(after.out), json.loads(before.out)
+    assert [notice["word"] for notice in told["notices"]] == ["Withdrawn"]
+    assert told["figures"] == was["figures"]
+
+
 @pytest.mark.parametrize(
     ("words", "sentence"),
     [
