@@ -7,12 +7,17 @@ from itertools import count
 from pathlib import Path
 
 import pytest
+from hypothesis import settings as hypothesis_settings
 from sqlalchemy import Engine, create_engine, event, text
 from sqlalchemy.orm import Session, sessionmaker
 
 from server.store.connect import make_engine, sessions
 from server.store.migrating import migrate
 from tests import postgres
+
+# no example is failed for its time: a machine with other work on it is slow, not wrong
+hypothesis_settings.register_profile("patient", deadline=None)
+hypothesis_settings.load_profile("patient")
 
 BOTH = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgres)]
 _NUMBERS = count(1)

@@ -80,7 +80,7 @@ def build(
         about_table=say.about_table(found.chain.table.grid.open_age, modelled=found.chain.modelled),
         rows=_rows(found),
         computed=basis.computed(found.settings),
-        basis=frames.basis(heading.edition.basis),
+        basis=(*frames.basis(heading.edition.basis), *_births(found)),
         further=_further(found),
         choice=_choice(found),
     )
@@ -170,6 +170,13 @@ def _cautions(found: Findings) -> tuple[Caution, ...]:
             else None,
             *basis.reading(found.settings),
         ],
+    )
+
+
+def _births(found: Findings) -> tuple[Sentence, ...]:
+    births = found.loaded.births
+    return (
+        () if births is None else (say.births(found.of.sex, found.name, found.of.period, births),)
     )
 
 

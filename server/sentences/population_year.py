@@ -259,3 +259,13 @@ def gain(ages: str, share: float) -> str:
         ages=ages,
         share=f"{whole(100 * share)}\N{NO-BREAK SPACE}%",
     )
+
+
+def births(sex: str, area: str, period: str, count: float) -> Sentence:
+    """How many were born alive, as handed in; no figure of the page rests on it."""
+    text = {
+        "f": _("Live births of girls in {area} in {year}: {count}."),
+        "m": _("Live births of boys in {area} in {year}: {count}."),
+        "p": _("Live births in {area} in {year}: {count}."),
+    }[sex]
+    return phrase(text, area=area, year=period, count=whole(count))

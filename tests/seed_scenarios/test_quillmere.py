@@ -12,9 +12,11 @@ from sqlalchemy.orm import Session
 from engine.estimates import Estimate, Reason
 from seed_scenarios import quillmere
 from seed_scenarios.quillmere_counts import REGIONS, WHOLE
-from server.results.loading import PopulationYear, load
-from server.results.questions import TrendQuestion
+from server.pages import population_year
+from server.results.loading import load
+from server.results.questions import PopulationYear, PopulationYearQuestion, TrendQuestion
 from server.results.series import series
+from server.sentences.pieces import plain
 from server.store import editions, schedules
 from server.store.connect import make_engine, sessions
 from server.store.heading import heading
@@ -63,6 +65,18 @@ def test_two_editions_with_their_notes(island: Session) -> None:
     assert (first.number, second.number, second.base) == (1, 2, 1)
     assert first.note.startswith("First delivery")
     assert second.note == "Revision of 2021 in Northlade: deaths under inquest, left out at first."
+
+
+def test_births_stand_beside_the_basis(island: Session) -> None:
+    """Persons are the girls and boys of the table handed in, printed where the counts are told."""
+    counts = {}
+    for sex in "fmp":
+        question = PopulationYearQuestion(PopulationYear("quillmere", sex, "2010"))
+        page = population_year.build(island, heading(island, quillmere.CODE, 2), question)
+        said = plain(page.basis[-1])
+        assert "in Quillmere in 2010: " in said
+        counts[sex] = int(said.rpartition(": ")[2].strip(".").replace(",", ""))
+    assert counts["p"] == counts["f"] + counts["m"] > 1_000
 
 
 def test_building_again_gives_the_same_editions(island: Session, tmp_path: Path) -> None:
