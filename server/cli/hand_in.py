@@ -67,6 +67,13 @@ def run(asked: argparse.Namespace, config: Config) -> int:
     print(say.outcome(len(report.errors), len(report.warnings), report.rows, report.sound))
     if report.errors:
         print(_("Nothing was written."), file=sys.stderr)
+        print(
+            _(
+                "The mapping, where it is to be corrected, is --column, --area, --whole, "
+                "--delivered, --sex, --sex-code, --open-age and --provisional."
+            ),
+            file=sys.stderr,
+        )
         return 2
     if asked.check_only:
         return 0
