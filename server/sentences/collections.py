@@ -16,8 +16,8 @@ def answer(count: int, standing: int) -> Sentence:
     if not standing:
         return phrase(
             n_(
-                "There is one collection, and none of its editions stands.",
-                "There are {count} collections, and none has an edition that stands.",
+                "There is one collection, without an edition that stands.",
+                "There are {count} collections, none with an edition that stands.",
                 count,
             )
         )

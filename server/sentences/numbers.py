@@ -29,6 +29,16 @@ def number(value: float, decimals: int, *, signed: bool = False) -> str:
     return f"{sign}{abs(rounded):,f}"
 
 
+def as_printed(value: float, decimals: int) -> float:
+    """The value of what is printed, so that numbers of one sentence add up.
+
+    >>> as_printed(76.8351, 2)
+    76.84
+    """
+    rounded = Decimal(str(value)).quantize(Decimal(1).scaleb(-decimals), context=_EXACT)
+    return float(rounded)
+
+
 def whole(value: float) -> str:
     """A count.
 

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from engine.indicators import Unit
 from server.sentences.dates import day
-from server.sentences.numbers import number
+from server.sentences.numbers import as_printed, number
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
 
@@ -29,8 +29,10 @@ def superseded(shown: int, newer: Piece, headline: Headline) -> Sentence:
             _("{stays} {newer} has no figure to set beside this one."), stays=stays, newer=newer
         )
     unit = headline.unit
-    here, there = (unit.scale * value for value in (headline.here, headline.there))
     decimals = unit.decimals + 1  # what a revision moves is small
+    here, there = (
+        as_printed(unit.scale * value, decimals) for value in (headline.here, headline.there)
+    )
     moved = number(abs(there - here), decimals)
     values: dict[str, Piece | str] = {
         "stays": stays,

@@ -41,3 +41,9 @@ def test_a_withdrawn_edition_can_still_be_read() -> None:
     other = withdrawn(2, when, "  ", NEWER)
     assert ": " not in plain(other)
     assert NEWER in other
+
+
+def test_what_a_revision_moves_is_the_difference_of_what_is_printed() -> None:
+    moved = Headline("Figure", INDICATORS["e0"].unit, 74.6449, 76.8351)
+    said = plain(superseded(1, NEWER, moved))
+    assert "gives 2.20 more here. Figure: 76.84 there, 74.64 on this page." in said
