@@ -7,6 +7,7 @@ from typing import Any
 
 from server.charts.chart import At, Chart, Series
 from server.charts.places import spread, storeys
+from server.charts.scales import decimals
 from server.charts.template import CHARACTER, DIVISION, RULE, Measure
 
 Part = dict[str, Any]
@@ -21,10 +22,17 @@ def margins(chart: Chart, measure: Measure) -> dict[str, int]:
     if ends:
         character = CHARACTER * measure.text / 14.5
         right = round(ENDS + character * max(map(len, ends)))
-        left = 30 if measure.narrow else left
+        if measure.narrow:
+            left = max(30, round(12 + character * _longest_tick(chart)))
     if _has_row(chart, measure, measure.width - left - right):
         bottom += 12
     return {"l": left, "r": right, "t": measure.top, "b": bottom, "pad": 0}
+
+
+def _longest_tick(chart: Chart) -> int:
+    """Characters of the longest number beside the scale."""
+    so = decimals(chart.y_ticks)
+    return max((len(f"{at:,.{so}f}") for at in chart.y_ticks), default=0)
 
 
 def placed(chart: Chart, measure: Measure, say: Callable[[str], str]) -> dict[str, list[Part]]:
