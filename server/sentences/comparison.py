@@ -113,14 +113,7 @@ def answer(pair: Pair, of: Answer, why_not: str) -> Sentence:
             this=pair.this.whole,
         )
     if of.kind in (Movement.NOT_CLEAR, Movement.TOO_SMALL):
-        return phrase(
-            _("No clear difference in {label} between {this} and {that}: {value} {interval}."),
-            label=label,
-            this=pair.this.whole,
-            that=pair.that.whole,
-            value=_amount(of, signed=True),
-            interval=bracketed(limits(of.difference, of.indicator.unit, signed=True)),
-        )
+        return _no_clear_difference(pair, of, label)
     parts: dict[str, Piece | str] = {
         "amount": _amount(of),
         "interval": _size(of),
@@ -142,6 +135,31 @@ def answer(pair: Pair, of: Answer, why_not: str) -> Sentence:
     )
     return phrase(
         text, label=_(of.indicator.label), this=pair.this.whole, that=pair.that.whole, **parts
+    )
+
+
+def _no_clear_difference(pair: Pair, of: Answer, label: str) -> Sentence:
+    parts: dict[str, Piece | str] = {
+        "label": label,
+        "value": _amount(of, signed=True),
+        "interval": bracketed(limits(of.difference, of.indicator.unit, signed=True)),
+    }
+    if pair.same_people and pair.this.period > pair.that.period:
+        return phrase(
+            _(
+                "No clear change in {label} among {who} between {first} and {last}: {value}"
+                " {interval}."
+            ),
+            who=pair.this.who,
+            first=pair.that.period,
+            last=pair.this.period,
+            **parts,
+        )
+    return phrase(
+        _("No clear difference in {label} between {this} and {that}: {value} {interval}."),
+        this=pair.this.whole,
+        that=pair.that.whole,
+        **parts,
     )
 
 
@@ -227,14 +245,14 @@ def evenness(pair: Pair, of: Answer) -> Sentence:
     later = pair.same_people and pair.this.period > pair.that.period
     texts = {
         (True, True): _(
-            "Length of life also became less even: relative unevenness rose from {there} to {here}."
+            "Length of life became less even: relative unevenness rose from {there} to {here}."
         ),
         (True, False): _(
             "Length of life was less even among {this} than among {that}: relative unevenness"
             " {here} against {there}."
         ),
         (False, True): _(
-            "Length of life also became more even: relative unevenness fell from {there} to {here}."
+            "Length of life became more even: relative unevenness fell from {there} to {here}."
         ),
         (False, False): _(
             "Length of life was more even among {this} than among {that}: relative unevenness"

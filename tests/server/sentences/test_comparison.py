@@ -95,6 +95,16 @@ def test_without_difference_or_without_two_sides_the_answer_says_so() -> None:
     assert "nothing to compare" in same
 
 
+def test_no_clear_difference_through_time_is_no_clear_change() -> None:
+    unclear = asked(estimate(0.6, -0.2, 1.4))
+    assert words(say.answer(say.Pair(MEN_LATE, MEN_EARLY), unclear, "")) == (
+        "No clear change in life expectancy at birth among men of Northlade between 1992 and 2012:"
+        " +0.6 years (−0.2 to +1.4)."
+    )
+    back = words(say.answer(say.Pair(MEN_EARLY, MEN_LATE), unclear, ""))
+    assert back.startswith("No clear difference in life expectancy at birth between men of")
+
+
 def test_evenness_through_time_and_between_places() -> None:
     fell = asked(estimate(-0.027, -0.03, -0.025), "H", 0.132, 0.16)
     assert "became more even: relative unevenness fell from 0.160 to 0.132" in words(
