@@ -8,7 +8,7 @@ from engine.ages import Array
 from engine.indicators import find
 from server.exports.table import Cell, Column, Row, Table
 from server.pages.cells import columns, gap, number, triple
-from server.pages.population_year_tables import what_it_counts
+from server.pages.population_year_tables import what_it_counts, why_missing
 from server.results.comparison import DECOMPOSED, Comparison, Contribution, Side
 from server.results.questions import PopulationYear
 from server.sentences import comparison as say
@@ -44,6 +44,11 @@ def figures(found: Comparison) -> Table:
         this=both.this.whole,
         that=both.that.whole,
     )
+    shown = {
+        key: [found.this.estimates[key], found.that.estimates[key], found.difference[key]]
+        for key in found.difference
+    }
+    note = " ".join([note, *why_missing(shown, found.settings)])
     rows = tuple(_figure_row(found, key) for key in found.difference)
     return Table("figures", _("The figures of both sides"), heads, rows, note)
 

@@ -1,5 +1,7 @@
 """The tables of a population-year page, from which its pictures and twins are made too."""
 
+from collections.abc import Mapping, Sequence
+
 import numpy as np
 
 from engine.estimates import Estimate, Reason
@@ -34,7 +36,10 @@ def figures(found: Findings) -> Table:
             year=found.of.period,
             before=before.of.period,
         )
-    note = " ".join([note, *_why_missing(found)])
+    shown = {
+        key: [found.estimates[key], *([before.change[key]] if before else [])] for key in USUAL
+    }
+    note = " ".join([note, *why_missing(shown, found.settings)])
     return Table(
         "figures",
         _("The figures of {who}", who=names.sex_and_year(found.of.sex, found.of.period)),
@@ -44,19 +49,18 @@ def figures(found: Findings) -> Table:
     )
 
 
-def _why_missing(found: Findings) -> list[str]:
+def why_missing(shown: Mapping[str, Sequence[Estimate]], settings: Settings) -> list[str]:
     """Each reason why a figure or its interval is missing, and what it is missing from. That a
-    table ends too early is said above the table."""
+    table ends too early is said elsewhere on the page."""
     missing: dict[int, list[str]] = {}
-    for key in USUAL:
-        sides = [found.estimates[key], found.before.change[key] if found.before else None]
-        for code in {int(side.reason) for side in sides if side is not None}:
+    for key, sides in shown.items():
+        for code in {int(side.reason) for side in sides}:
             if code not in (Reason.NONE, Reason.OPEN_GROUP_TOO_LARGE):
                 missing.setdefault(code, []).append(_(find(key).label))
-    if {len(labels) for labels in missing.values()} == {len(USUAL)}:
-        return [reason(code, found.settings) for code in missing]
+    if {len(labels) for labels in missing.values()} == {len(shown)}:
+        return [reason(code, settings) for code in missing]
     return [
-        _("{labels}: {why}", labels="; ".join(labels), why=reason(code, found.settings))
+        _("{labels}: {why}", labels="; ".join(labels), why=reason(code, settings))
         for code, labels in sorted(missing.items())
     ]
 
