@@ -2,6 +2,7 @@
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from typing import Literal
 
 from engine.ages import Array
 from engine.chain import Chain
@@ -9,18 +10,24 @@ from engine.estimates import Reason
 from engine.tables import Partials
 
 
+Limits = Literal["even", "odds", "gamma"]
+
+
 @dataclass(frozen=True, slots=True)
 class Unit:
     """What a printed figure counts. The engine speaks per person-year and in years only; `scale`
-    turns its number into the printed one, for display and nowhere else. Of a `part` of a whole, a
-    number between 0 and 1, the limits are taken on the scale of log odds, so that they lie there
-    too."""
+    turns its number into the printed one, for display and nowhere else. `limits` says on which
+    scale an interval is taken, so that its ends are numbers of the same kind:
+
+    even:  the value and as much on both sides;
+    odds:  of a part of a whole, between 0 and 1, on the scale of log odds;
+    gamma: of a rate, a weighted sum of counts, by the gamma law (exact where the weights are one)."""
 
     key: str
     label: str
     scale: float
     decimals: int
-    part: bool = False
+    limits: Limits = "even"
 
 
 @dataclass(frozen=True, slots=True)

@@ -63,7 +63,7 @@ def estimates(
     def delta(one: Indicator, bare: Estimate) -> Estimate:
         with np.errstate(all="ignore"):
             half = _half((_by_death(one, chain) ** 2 * panel.deaths).sum(axis=-1), settings)
-            low, high = (_by_odds if one.unit.part else _evenly)(bare.value, half)
+            low, high = (_by_odds if one.unit.limits == "odds" else _evenly)(bare.value, half)
         return _within(bare, low, high, Reason.NO_DEATHS)
 
     found = {one.key: _bare(one, chain) for one in indicators}

@@ -33,7 +33,7 @@ def between(first: int, last: int, *, label: str, per: str, definition: str) -> 
         key=f"{years}q{first}",
         symbol=f"{years}q{first}",
         label=label,
-        unit=Unit(f"per_1000_{per.replace(' ', '_')}", f"per 1,000 {per}", 1000, 1, part=True),
+        unit=Unit(f"per_1000_{per.replace(' ', '_')}", f"per 1,000 {per}", 1000, 1, limits="odds"),
         definition=definition,
         formula=f"{years}q{first} = 1 - l({last}) / l({first})",
         source="Preston, Heuveline & Guillot (2001), Demography, chapter 3",

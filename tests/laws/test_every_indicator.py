@@ -180,7 +180,7 @@ def test_a_hundred_times_the_people_is_a_tenth_of_the_interval(
 
 def scaled(indicator: Indicator, limits: Array) -> Array:
     """On the scale on which limits are taken: that of log odds for a part of a whole."""
-    return logit(limits) if indicator.unit.part else limits
+    return logit(limits) if indicator.unit.limits == "odds" else limits
 
 
 @pytest.mark.parametrize("key", ["45q15", "5q0"])
