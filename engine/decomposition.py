@@ -164,7 +164,13 @@ class _Line:
             getattr(self.start, name) + t * (getattr(self.end, name) - getattr(self.start, name))
             for name in ("exposure", "infant_weight", "infant_ratio")
         )
-        panel = Panel(self.start.grid, mx * exposure, exposure, weight, ratio)
+        panel = replace(
+            self.start,
+            deaths=mx * exposure,
+            exposure=exposure,
+            infant_weight=weight,
+            infant_ratio=ratio,
+        )
         return run(panel, settings, mx=mx)
 
     def cuts(self, settings: Settings) -> _Cuts:

@@ -1,7 +1,9 @@
 """Deaths and person-years of many populations on one age grid."""
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
+from functools import reduce
+from typing import Any
 
 import numpy as np
 
@@ -10,13 +12,20 @@ from engine.ages import AgeGrid, Array
 SEXES = ("f", "m", "p")  # women, men, persons
 
 
+BIRTHS = ("live", "stillborn", "neonatal_deaths")  # the last axis of Panel.births
+
+
 @dataclass(frozen=True, slots=True)
 class Panel:
-    """Counts [..., age] on one grid, and what the first-year rule must know of the sexes.
+    """Counts [..., age] on one grid, and what some figures must know besides.
 
     Women and men have rules of their own for the first year of life. A table for persons takes the
     mean of the two, weighted by infant deaths, so a panel carries for women and men (last axis, in
     this order) their share of the infant deaths and their infant death rate over that of the table.
+
+    `whole` is the population of which this one is a part, in the same years and sex: the one to
+    borrow a rate from and to be set against. `standard` is one whose people weight the ages. Both
+    are panels of the same batch and grid, nan where a population has none.
     """
 
     grid: AgeGrid
@@ -24,6 +33,9 @@ class Panel:
     exposure: Array  # [..., age], person-years
     infant_weight: Array  # [..., 2]
     infant_ratio: Array  # [..., 2]
+    births: Array  # [..., 3], as in BIRTHS; nan where not handed in
+    whole: "Panel | None" = None
+    standard: "Panel | None" = None
 
     def __post_init__(self) -> None:
         for name in ("deaths", "exposure"):
@@ -40,15 +52,14 @@ class Panel:
     def batch_shape(self) -> tuple[int, ...]:
         return self.deaths.shape[:-1]
 
-    def __getitem__(self, where: object) -> "Panel":
+    def over(self, change: Callable[[Array], Array]) -> "Panel":
+        """Every array changed alike, where the change is one of the leading axes only."""
+        arrays: dict[str, Any] = {name: change(getattr(self, name)) for name in COUNTED}
+        return replace(self, **arrays, **self._beside(lambda other: other.over(change)))
+
+    def __getitem__(self, where: Any) -> "Panel":
         """Part of the batch; `where` indexes the leading axes only."""
-        return replace(
-            self,
-            **{
-                name: getattr(self, name)[where]
-                for name in ("deaths", "exposure", "infant_weight", "infant_ratio")
-            },
-        )
+        return self.over(lambda array: np.asarray(array[where]))
 
     def regroup(self, to: AgeGrid) -> "Panel":
         """The same populations on a coarser grid, exactly."""
@@ -57,16 +68,27 @@ class Panel:
             grid=to,
             deaths=self.grid.regroup(self.deaths, to),
             exposure=self.grid.regroup(self.exposure, to),
+            **self._beside(lambda other: other.regroup(to)),
         )
+
+    def _beside(self, change: "Callable[[Panel], Panel]") -> dict[str, Any]:
+        """What stands beside the counts, changed like them."""
+        others = {name: getattr(self, name) for name in BESIDE}
+        return {name: None if one is None else change(one) for name, one in others.items()}
 
     @classmethod
     def of(cls, grid: AgeGrid, deaths: Array, exposure: Array, *, sex: str) -> "Panel":
         """One sex ('f' or 'm'), or persons ('p') of whom the sexes are not known: then the plain
         mean of the two first-year rules is taken."""
         weight = {"f": (1.0, 0.0), "m": (0.0, 1.0), "p": (0.5, 0.5)}[sex]
-        batch = (*deaths.shape[:-1], 2)
+        batch = deaths.shape[:-1]
         return cls(
-            grid, deaths, exposure, np.broadcast_to(np.array(weight), batch).copy(), np.ones(batch)
+            grid,
+            deaths,
+            exposure,
+            np.broadcast_to(np.array(weight), (*batch, 2)).copy(),
+            np.ones((*batch, 2)),
+            np.full((*batch, len(BIRTHS)), np.nan),
         )
 
     @classmethod
@@ -85,17 +107,54 @@ class Panel:
         with np.errstate(divide="ignore", invalid="ignore"):
             weight = np.where(total > 0, infant / total, 0.5)
             ratio = (infant / years) / (total / years.sum(axis=-1, keepdims=True))
-        return cls(grid, deaths, exposure, weight, np.where(np.isfinite(ratio), ratio, 1.0))
+        ratio = np.where(np.isfinite(ratio), ratio, 1.0)
+        return cls(grid, deaths, exposure, weight, ratio, women.births + men.births)
+
+    @classmethod
+    def pooled(cls, panels: "Sequence[Panel]") -> "Panel":
+        """The counts of several years, or of several areas, of one sex as those of one population,
+        on the grid they share: exact sums, so that its rates are weighted by person-years.
+
+        Of persons, pool women and men each and join them afterwards (`persons`): the infants' mix
+        is otherwise the mean by infant deaths. What stands beside the counts is pooled likewise.
+        """
+        grid = reduce(AgeGrid.common, (panel.grid for panel in panels))
+        panels = [panel.regroup(grid) for panel in panels]
+        infant = np.stack([panel.deaths[..., :1] for panel in panels])
+        with np.errstate(all="ignore"):
+            share = np.where(infant.sum(axis=0) > 0, infant / infant.sum(axis=0), 1 / len(panels))
+        weights: dict[str, Any] = {"infant_weight": share, "infant_ratio": share}
+        arrays: dict[str, Any] = {
+            name: (weights.get(name, 1.0) * _side_by_side(panels, name)).sum(axis=0)
+            for name in COUNTED
+        }
+        return cls(grid, **arrays, **_every(cls.pooled, panels))
 
     @classmethod
     def stack(cls, panels: "Sequence[Panel]") -> "Panel":
         """Panels of one grid as one batch, a new first axis."""
         if len({panel.grid for panel in panels}) != 1:
             raise ValueError("panels on different age grids cannot be stacked; regroup them first")
-        return cls(
-            panels[0].grid,
-            *(
-                np.stack([getattr(panel, name) for panel in panels])
-                for name in ("deaths", "exposure", "infant_weight", "infant_ratio")
-            ),
-        )
+        arrays: dict[str, Any] = {name: _side_by_side(panels, name) for name in COUNTED}
+        return cls(panels[0].grid, **arrays, **_every(cls.stack, panels))
+
+
+COUNTED = ("deaths", "exposure", "infant_weight", "infant_ratio", "births")
+BESIDE = ("whole", "standard")
+
+
+def _side_by_side(panels: "Sequence[Panel]", name: str) -> Array:
+    return np.stack([getattr(panel, name) for panel in panels])
+
+
+def _every(join: "Callable[[Sequence[Panel]], Panel]", panels: "Sequence[Panel]") -> dict[str, Any]:
+    """What stands beside panels, joined like them: nan where one has none, None where none has."""
+    nothing: dict[str, Any] = dict.fromkeys(BESIDE)
+    missing = replace(panels[0], **nothing).over(lambda array: np.full_like(array, np.nan))
+    others = {name: [getattr(panel, name) for panel in panels] for name in BESIDE}
+    return {
+        name: None
+        if all(one is None for one in found)
+        else join([missing if one is None else one for one in found])
+        for name, found in others.items()
+    }

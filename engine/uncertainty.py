@@ -215,12 +215,8 @@ def _within(bare: Estimate, low: Array, high: Array, why: Reason | NDArray[np.in
 
 def _flat(panel: Panel) -> Panel:
     """The same populations in one row."""
-    names = ("deaths", "exposure", "infant_weight", "infant_ratio")
     rows = math.prod(panel.batch_shape)
-    return replace(
-        panel,
-        **{name: (part := getattr(panel, name)).reshape(rows, part.shape[-1]) for name in names},
-    )
+    return panel.over(lambda array: array.reshape(rows, array.shape[-1]))
 
 
 def _drawn(
@@ -228,13 +224,8 @@ def _drawn(
 ) -> dict[str, Array]:
     """The indicators of simulated deaths [draw, row, age]: by key, [draw, row]."""
     batch = deaths.shape[:-1]
-    simulated = replace(
-        panel,
-        deaths=deaths,
-        exposure=np.broadcast_to(panel.exposure, deaths.shape),
-        infant_weight=np.broadcast_to(panel.infant_weight, (*batch, 2)),
-        infant_ratio=np.broadcast_to(panel.infant_ratio, (*batch, 2)),
-    )
+    copies = panel.over(lambda array: np.broadcast_to(array, (*batch, array.shape[-1])))
+    simulated = replace(copies, deaths=deaths)
     with np.errstate(all="ignore"):
         observed, drawn = run(panel, settings), run(simulated, settings)
         return {one.key: one.drawn(observed, drawn) for one in indicators}

@@ -6,7 +6,6 @@ import pytest
 from engine.ages import AgeGrid
 from engine.chain import gradient, run
 from engine.indicators import find as indicator
-from engine.panel import Panel
 from engine.settings import SETTINGS, Settings, find
 from engine.tables import LifeTable
 from tests.engine.stepping import complex_step, largest_error
@@ -77,12 +76,7 @@ def test_a_batch_is_its_rows_bit_for_bit_in_any_split(settings: Settings, grid: 
 @pytest.mark.fast
 def test_memory_order_does_not_matter() -> None:
     panel = gompertz_panel(seed=6, level=np.linspace(2e-5, 5e-5, 7))
-    turned = Panel(
-        panel.grid,
-        *(np.asfortranarray(getattr(panel, name)) for name in ("deaths", "exposure")),
-        panel.infant_weight,
-        panel.infant_ratio,
-    )
+    turned = panel.over(np.asfortranarray)
     for settings in SETTINGS.values():
         np.testing.assert_array_equal(run(panel, settings).table.ex, run(turned, settings).table.ex)
 
