@@ -47,6 +47,18 @@ class Chain:
         return self.rates.pull(self.closed.pull(g.mx + self.separation.pull(g.ax)))
 
 
+@dataclass(frozen=True, slots=True)
+class Tally:
+    """A count that chance moves, and what each one counted weighs in the number: value = count *
+    weight. What it rests on is not in the life table, so it has no gradient in the rates."""
+
+    count: Array  # [...]
+    weight: Array  # [...]
+
+
+Slopes = Partials | Array | Tally
+
+
 class Reading(Protocol):
     """A number read off a chain: what the methods here need of an indicator."""
 
@@ -64,7 +76,7 @@ class Reading(Protocol):
         """-> [...]"""
 
     @property
-    def partials(self) -> Callable[[Chain], Partials | Array]:
+    def partials(self) -> Callable[[Chain], Slopes]:
         """Derivatives by the table's columns; or, read off the rates, by `chain.rates.mx`."""
 
 
@@ -80,6 +92,8 @@ def gradient(reading: Reading, chain: Chain) -> Array:
     partials = reading.partials(chain)
     if isinstance(partials, Partials):
         return chain.pull(partials)
+    if isinstance(partials, Tally):
+        raise ValueError(f"{reading.label} is a count over births, not read off death rates")
     return chain.rates.pull(partials)
 
 

@@ -28,6 +28,11 @@ class Reason(IntEnum):
     WITHHELD = 12
     OFTEN_LOST = 13  # its value stands, but too many simulated tables lack the number
     NO_LAW = 14  # no law that rises with age fits the rates below the open age
+    NO_BIRTHS = 15  # births, stillbirths or neonatal deaths were not handed in
+    NO_WHOLE = 16  # the area is part of no larger one with rates at every age
+    NO_STANDARD = 17  # the population that weights the ages is not held
+    TOO_FEW_DEATHS = 18  # fewer than the number needs
+    NOT_DECOMPOSED = 19  # no exact share of the difference belongs to an age
 
 
 @dataclass(frozen=True, slots=True)

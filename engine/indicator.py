@@ -5,12 +5,10 @@ from dataclasses import dataclass
 from typing import Literal
 
 from engine.ages import Array
-from engine.chain import Chain
+from engine.chain import Chain, Slopes
 from engine.estimates import Reason
-from engine.tables import Partials
 
-
-Limits = Literal["even", "odds", "gamma"]
+Limits = Literal["even", "odds", "gamma", "count"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -21,7 +19,8 @@ class Unit:
 
     even:  the value and as much on both sides;
     odds:  of a part of a whole, between 0 and 1, on the scale of log odds;
-    gamma: of a rate, a weighted sum of counts, by the gamma law (exact where the weights are one)."""
+    gamma: of a rate, a weighted sum of counts, by the gamma law (exact where the weights are one);
+    count: of a count over births, exact. Its indicator gives a Tally in place of derivatives."""
 
     key: str
     label: str
@@ -35,13 +34,19 @@ class Needs:
     """What the counts must hold before the number may be read."""
 
     ages: tuple[int, ...] = ()  # each begins an age group
+    births: tuple[str, ...] = ()  # those of engine.panel.BIRTHS that were handed in
+    whole: bool = False  # the panel has the population it is part of
+    standard: str = (
+        ""  # code of the population-year whose people weight the ages, in Panel.standard
+    )
+    least_deaths: int = 0  # fewer deaths give no figure
     open_deaths: bool = False  # somebody died in the open group, or a law spreads it
     open_small: bool = False  # at most the settings' share of births reach it, or a law spreads it
     span_deaths: bool = False  # somebody died in the settings' span for the ageing rate
     otherwise: Reason = Reason.TOO_FEW_AGES  # why there is no number though all this holds
 
 
-def _none(chain: Chain) -> Partials | Array:
+def _none(chain: Chain) -> Slopes:
     raise ValueError("this indicator is not smooth and has no partial derivatives")
 
 
@@ -49,10 +54,10 @@ def _none(chain: Chain) -> Partials | Array:
 class Indicator:
     """A number read off a life table, or off rates. Every field would be true in a printed report.
 
-    `partials` are the derivatives by the table's columns for a number read off the table, and those
-    by the rates [..., age] for one read off rates. `redraw` reads the number off simulated counts,
-    given the chain of the observed ones, where a choice made on the observed counts is to be kept;
-    without it `value` does.
+    `partials` are the derivatives by the table's columns for a number read off the table, those by
+    the rates [..., age] for one read off rates, and a Tally for a count over births. `redraw` reads
+    the number off simulated counts, given the chain of the observed ones, where a choice made on
+    the observed counts is to be kept; without it `value` does.
     """
 
     key: str
@@ -65,7 +70,7 @@ class Indicator:
     why_not_smooth: str  # empty where it is smooth
     needs: Needs
     value: Callable[[Chain], Array]
-    partials: Callable[[Chain], Partials | Array] = _none
+    partials: Callable[[Chain], Slopes] = _none
     redraw: Callable[[Chain, Chain], Array] | None = None  # (observed, simulated)
 
     @property
