@@ -1,0 +1,58 @@
+"""Exact limits of a count, and limits of a weighted sum of counts, where deaths are Poisson."""
+
+from typing import NamedTuple
+
+import numpy as np
+from scipy.special import gammaincinv
+
+from engine.ages import Array
+
+
+class Interval(NamedTuple):
+    low: Array
+    high: Array
+
+
+def exact_limits(count: Array, level: float) -> Interval:
+    """Limits of the mean of a Poisson count: the means at which a count as high, or as low, as this
+    one would come up with the chance (1 - level) / 2.
+
+    They are quantiles of a gamma law of the shape D, or D + 1 for the upper one, hence defined for
+    parts of a count too. For a rate divide by its person-years.
+
+    Shape:   count [...] -> [...] each.
+    Missing: nan, or a count below 0, gives nan.
+    Source:  Garwood (1936), Fiducial limits for the Poisson distribution, Biometrika 28, 437-442.
+    >>> low, high = exact_limits(np.array([0.0, 10.0]), 0.95)
+    >>> low.round(3), high.round(3)
+    (array([0.   , 4.795]), array([ 3.689, 18.39 ]))
+    """
+    one = np.ones_like(count)
+    return gamma_limits(count, count, one, level)
+
+
+def gamma_limits(value: Array, variance: Array, largest_weight: Array, level: float) -> Interval:
+    """Limits of y = sum w D, D Poisson counts and w their weights.
+
+    With variance v = sum w^2 D and k the largest weight: the lower limit is a quantile of the gamma
+    law of mean y and variance v, the upper one of that of mean y + k and variance v + k^2, as if
+    one death more had fallen where it weighs most.
+
+    Where all weights are equal the limits are exact (`exact_limits`).
+
+    Shape:   value, variance, largest_weight [...] -> [...] each.
+    Missing: nan in, nan out. Without deaths (y = v = 0) the lower limit is 0.
+    Source:  Fay & Feuer (1997), Confidence intervals for directly standardized rates, Statistics in
+             Medicine 16, 791-801.
+    """
+    tail = (1 - level) / 2
+    with np.errstate(all="ignore"):
+        low = _gamma_quantile(value, variance, tail)
+        low = np.where((value == 0) & (variance == 0), 0.0, low)
+        high = _gamma_quantile(value + largest_weight, variance + largest_weight**2, 1 - tail)
+    return Interval(low, np.where(np.isnan(low), np.nan, high))
+
+
+def _gamma_quantile(mean: Array, variance: Array, share: float) -> Array:
+    """Quantile of the gamma law of this mean and variance."""
+    return np.asarray(variance / mean * gammaincinv(mean**2 / variance, share))
