@@ -48,7 +48,9 @@ _COLUMNS = Mapping(
 MAPPINGS = {
     "deaths": replace(_COLUMNS, age="age", deaths="deaths", status="status"),
     "population": replace(_COLUMNS, age="age", population="population"),
-    "births": replace(_COLUMNS, births="births"),
+    "births": replace(
+        _COLUMNS, births="births", stillbirths="stillbirths", neonatal_deaths="neonatal_deaths"
+    ),
 }
 Files = dict[str, tuple[str, bytes]]  # role: name and content
 

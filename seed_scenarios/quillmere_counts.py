@@ -9,7 +9,7 @@ Death rates follow published laws, added up:
                                                 et al. (2013), Population Studies 67:37-48
 """
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, fields, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -53,11 +53,14 @@ WHOLE = Region("quillmere", "Quillmere", sum(region.people for region in REGIONS
 
 @dataclass(frozen=True, slots=True)
 class Counts:
-    """Deaths and mid-year population [year, sex, age], live births [year, sex], of one area."""
+    """Deaths and mid-year population [year, sex, age] of one area; live births, stillbirths and
+    deaths before 28 days [year, sex]."""
 
     deaths: NDArray[np.int64]
     population: NDArray[np.int64]
     births: NDArray[np.int64]
+    stillbirths: NDArray[np.int64]
+    neonatal_deaths: NDArray[np.int64]
 
 
 def death_rates(region: Region, year: int) -> Array:
@@ -127,10 +130,15 @@ def _drawn(region: Region, order: int) -> Counts:
     rates = np.stack([death_rates(region, year) for year in YEARS])
     harsh = 1 + 0.008 * np.random.default_rng([SEED, 99]).standard_normal(len(YEARS))
     expected = _grouped(people * rates) * harsh[:, None, None]
+    deaths = np.random.default_rng([SEED, order]).poisson(expected)
+    chance = np.random.default_rng([SEED, 20 + order])
+    still = 0.0045 * np.exp(-0.015 * (np.array(YEARS) - 1999))[:, None] * births
     return Counts(
-        np.random.default_rng([SEED, order]).poisson(expected),
+        deaths,
         np.rint(_grouped(people)).astype(np.int64),
         np.rint(births).astype(np.int64),
+        chance.poisson(still),
+        chance.binomial(deaths[..., 0], 0.68),
     )
 
 
@@ -143,14 +151,17 @@ def _first_reported(region: Region, counts: Counts, order: int) -> Counts:
         starts = np.array(STARTS)
         known[YEARS.index(REVISED)] = np.where((starts >= 15) & (starts < 65), 0.95, 0.995)
     chance = np.random.default_rng([SEED, 50 + order])
-    return replace(counts, deaths=chance.binomial(counts.deaths, known))
+    deaths = chance.binomial(counts.deaths, known)
+    early = np.minimum(counts.neonatal_deaths, deaths[..., 0])
+    return replace(counts, deaths=deaths, neonatal_deaths=early)
 
 
 def _with_whole(regions: list[Counts]) -> dict[str, Counts]:
     whole = Counts(
-        sum((counts.deaths for counts in regions[1:]), regions[0].deaths),
-        sum((counts.population for counts in regions[1:]), regions[0].population),
-        sum((counts.births for counts in regions[1:]), regions[0].births),
+        *(
+            np.sum([getattr(counts, one.name) for counts in regions], axis=0)
+            for one in fields(Counts)
+        )
     )
     named = {region.code: counts for region, counts in zip(REGIONS, regions, strict=True)}
     return {**named, WHOLE.code: whole}

@@ -39,11 +39,13 @@ def population_csv(
 
 
 def births_csv(counted: dict[str, Counts], years: tuple[int, ...], areas: tuple[str, ...]) -> bytes:
-    """Live births by year, area and sex of the child."""
-    lines = ["year,area,area_name,sex,births"]
+    """Live births, stillbirths and deaths before 28 days by year, area and sex of the child."""
+    lines = ["year,area,area_name,sex,births,stillbirths,neonatal_deaths"]
     for region, year, sex, at in _cells(years, areas):
-        births = counted[region.code].births[at]
-        lines.append(f"{year},{region.code},{region.name},{_WORDS[sex]},{births}")
+        counts = counted[region.code]
+        numbers = (counts.births[at], counts.stillbirths[at], counts.neonatal_deaths[at])
+        where = (year, region.code, region.name, _WORDS[sex])
+        lines.append(",".join(map(str, (*where, *numbers))))
     return _text(lines)
 
 

@@ -19,7 +19,7 @@ def add_files(command: argparse.ArgumentParser) -> None:
         ("counts", _("deaths and population in one file")),
         ("deaths", _("deaths")),
         ("population", _("population or person-years")),
-        ("births", _("live births")),
+        ("births", _("births: live and, if you have them, still; deaths before 28 days")),
     ):
         files.add_argument(f"--{role}", metavar=_("FILE"), help=text)
 

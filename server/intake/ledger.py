@@ -9,6 +9,7 @@ import numpy as np
 from engine.ages import AgeGrid, Array
 from engine.panel import SEXES
 from server.intake.cells import Ints, parts_of, place_of, sexes_of
+from server.intake.mapping import WITHOUT_AGE
 from server.intake.problems import Value
 from server.intake.schedules import Block
 
@@ -141,7 +142,7 @@ class Ledger:
             yield pair.people.regroup(pair.grid)
         paired = [pair.deaths.place for pair in self.pairs] or [np.zeros(0, np.int64)]
         for block in self.blocks:
-            if block.measure == "births":
+            if block.measure in WITHOUT_AGE:
                 yield block
             else:
                 yield block.pick(~np.isin(block.place, np.concatenate(paired)))

@@ -13,6 +13,8 @@ COLUMNS = (
     "deaths",
     "population",
     "births",
+    "stillbirths",
+    "neonatal_deaths",
     "status",
 )
 
@@ -23,6 +25,17 @@ ROLES: dict[str, tuple[str, ...]] = {
     "population": ("population",),
     "births": ("births",),
 }
+# and which it may carry besides
+BESIDE: dict[str, tuple[str, ...]] = {"births": ("stillbirths", "neonatal_deaths")}
+WITHOUT_AGE = (*ROLES["births"], *BESIDE["births"])  # counts, not columns, that no age goes with
+
+
+def numbers_of(role: str) -> tuple[str, ...]:
+    """The numbers that a file of this role carries or may carry."""
+    return (*ROLES[role], *BESIDE.get(role, ()))
+
+
+NUMBERS = tuple(dict.fromkeys(number for role in ROLES for number in numbers_of(role)))
 
 
 @dataclass(frozen=True, slots=True)
@@ -37,7 +50,9 @@ class Mapping:
     area_name: str = ""  # column of names; without a column of codes, codes are made from them
     deaths: str = ""
     population: str = ""
-    births: str = ""
+    births: str = ""  # live births
+    stillbirths: str = ""
+    neonatal_deaths: str = ""  # deaths before 28 days, of those counted at age 0
     status: str = ""  # column that says provisional or final
 
     # what stands in no column

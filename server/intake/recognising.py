@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from server.intake.areas import is_code
 from server.intake.labels import read_age, read_sex, read_status, read_year
-from server.intake.mapping import COLUMNS, ROLES, Mapping
+from server.intake.mapping import COLUMNS, NUMBERS, ROLES, Mapping, numbers_of
 from server.intake.reading import Reading
 
 # headings as compared: lower case, every run of other signs than letters and digits one space
@@ -20,6 +20,8 @@ HEADINGS = {
     "population": "population|person years|personyears|pop|exposure|mid year population|"
     "midyear population|population at risk",
     "births": "births|live births|livebirths|number of births",
+    "stillbirths": "stillbirths|still births|stillborn|number of stillbirths|late fetal deaths",
+    "neonatal_deaths": "neonatal deaths|neonatal|deaths under 28 days|deaths before 28 days",
     "status": "status|state of the figures",
 }
 COUNTS = ("count", "number", "n", "value", "total")  # name a number without saying of what
@@ -73,7 +75,7 @@ _LOOKS = {
 
 def fields_of(role: str) -> tuple[str, ...]:
     """The fields a file of this role may fill."""
-    numbers = {number for needed in ROLES.values() for number in needed} - set(ROLES[role])
+    numbers = set(NUMBERS) - set(numbers_of(role))
     skipped = numbers | ({"age"} if role == "births" else set())
     return tuple(field for field in COLUMNS if field not in skipped)
 
@@ -150,7 +152,7 @@ def _unused(column: str, fields: tuple[str, ...]) -> Recognised:
     elif says in ("", *fields):
         why = UNKNOWN
     else:
-        why = OTHER_COUNT if says in ("deaths", "population", "births") else NOT_NEEDED
+        why = OTHER_COUNT if says in NUMBERS else NOT_NEEDED
     return Recognised(column, "", "not used", why)
 
 

@@ -7,9 +7,10 @@ import numpy as np
 
 from engine.ages import AgeGrid, Array
 from server.intake.cells import Cells, Flags, Ints
+from server.intake.mapping import NUMBERS
 from server.intake.problems import Fault, Value
 
-MEASURES = {"deaths": "deaths", "population": "person_years", "births": "births"}
+MEASURES = {field: field for field in NUMBERS} | {"population": "person_years"}
 DECIMALS = 6  # counts are rounded to them
 
 

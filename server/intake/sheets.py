@@ -13,10 +13,9 @@ from numpy.typing import NDArray
 
 from engine.ages import Array
 from server.intake.layout import Layout
-from server.intake.mapping import COLUMNS, ROLES, Mapping
+from server.intake.mapping import COLUMNS, NUMBERS, Mapping, numbers_of
 
 T = TypeVar("T")
-NUMBERS = ("deaths", "population", "births")
 _NUMBER = re.compile(r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?|[+-]?inf(?:inity)?", re.IGNORECASE)
 
 
@@ -68,7 +67,7 @@ class Sheet:
 def load(file: Layout, mapping: Mapping, role: str) -> Sheet:
     """Read the mapped columns of a file that passed the checks of files and of columns."""
     fields = [field for field in COLUMNS if mapping.column(field)]
-    fields = [field for field in fields if field not in NUMBERS or field in ROLES[role]]
+    fields = [field for field in fields if field not in NUMBERS or field in numbers_of(role)]
     place = {field: file.columns.index(mapping.column(field)) for field in fields}
     texts = {place[field] for field in fields if field not in NUMBERS}
     table = _table(file, place, texts)

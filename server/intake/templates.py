@@ -13,7 +13,7 @@ _DEATHS = {
     "f": "4 1 1 1 2 2 2 4 5 9 15 22 33 47 70 103 139 182 196 151 68 17",
     "m": "5 1 1 1 3 5 5 6 8 14 23 35 52 74 106 142 172 192 166 97 32 6",
 }
-_BIRTHS = {"f": 1190, "m": 1250}
+_BIRTHS = {"f": (1190, 5, 3), "m": (1250, 6, 4)}
 _YEARS = {2014: ("final", 1.0, 1.0), 2015: ("provisional", 1.01, 0.98)}
 
 
@@ -47,11 +47,11 @@ def _population() -> str:
 
 def _births() -> str:
     return _csv(
-        "area,year,sex,births",
+        "area,year,sex,births,stillbirths,neonatal_deaths",
         (
-            ("fenwold", year, sex, round(count * factor))
+            ("fenwold", year, sex, *(round(count * factor) for count in counts))
             for year, (_, factor, _) in _YEARS.items()
-            for sex, count in _BIRTHS.items()
+            for sex, counts in _BIRTHS.items()
         ),
     )
 

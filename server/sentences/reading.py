@@ -28,7 +28,9 @@ def field(code: str) -> str:
         "area_name": _("area, name"),
         "deaths": _("deaths"),
         "population": _("population or person-years"),
-        "births": _("births"),
+        "births": _("live births"),
+        "stillbirths": _("stillbirths"),
+        "neonatal_deaths": _("deaths before 28 days"),
         "status": _("provisional or final"),
     }[code]
 

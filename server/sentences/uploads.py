@@ -99,7 +99,13 @@ def holds(
     delivered: Sequence[str],
 ) -> tuple[tuple[str, str], ...]:
     """What was understood, word and text, so that a slip in the reading is seen."""
-    kinds = {"deaths": _("deaths"), "person_years": _("person-years"), "births": _("births")}
+    kinds = {
+        "deaths": _("deaths"),
+        "person_years": _("person-years"),
+        "births": _("live births"),
+        "stillbirths": _("stillbirths"),
+        "neonatal_deaths": _("deaths before 28 days"),
+    }
     facts = [
         (_("Counts"), names.listed([kinds[one] for one in measures])),
         (_("Areas"), names.listed(list(areas), most=12)),

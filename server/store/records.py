@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from engine.ages import AgeGrid, Array
 
-MEASURES = ("deaths", "person_years", "births")
+MEASURES = ("deaths", "person_years", "births", "stillbirths", "neonatal_deaths")
 STATUSES = ("final", "provisional")
 
 

@@ -93,6 +93,17 @@ def _infants(ledger: Ledger) -> Iterator[Fault]:
             yield other.fault(other.row[at, 0], values)
 
 
+def _neonates(ledger: Ledger) -> Iterator[Fault]:
+    deaths = ledger.lines.get("deaths", {})
+    for place, (block, line) in ledger.lines.get("neonatal_deaths", {}).items():
+        if place in deaths and _first_year(deaths[place]):
+            other, at = deaths[place]
+            infants, early = float(other.values[at, 0]), float(block.values[line, 0])
+            if early > infants:
+                values = {**ledger.named(place), "early": early, "deaths": infants}
+                yield block.fault(block.row[line, 0], values)
+
+
 def _first_year(line: Line) -> bool:
     return line[0].grid.has(1)
 
@@ -182,6 +193,16 @@ CHECKS: tuple[Check[Ledger], ...] = (
         expected="at most {births}, the births of the year",
         remedy="Compare the births with their source.",
         find=_infants,
+    ),
+    Check(
+        key="neonatal_deaths_exceed_infant_deaths",
+        severity="warning",
+        meaning="More children died before 28 days than in their whole first year, of which those "
+        "days are a part.",
+        found="{early} deaths before 28 days in {area}, {sex} {year}",
+        expected="at most {deaths}, the deaths under age 1",
+        remedy="Compare both with their source: the deaths under age 1 hold those before 28 days.",
+        find=_neonates,
     ),
     Check(
         key="fractional_deaths",

@@ -122,6 +122,10 @@ CASES = (
     Case("jump_of_deaths", _set(ONE, deaths=1_010)),
     Case("jump_of_population", _set(WOMEN[3:4], population=41_000)),
     Case("infant_deaths_exceed_births", lambda: [counts(SOUND), births(42)]),
+    Case(
+        "neonatal_deaths_exceed_infant_deaths",
+        lambda: [counts(SOUND), births(4_000, sex="f", areas=("north",), neonatal_deaths=90)],
+    ),
     Case("fractional_deaths", _set(ONE, deaths=640.5)),
     Case("age_groups_change", lambda: [counts(_joined("5-14", "15-44", "5-44", WOMEN))]),
     Case("deaths_exceed_population", _mapped(deaths="population", population="deaths")),

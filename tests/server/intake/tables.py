@@ -93,9 +93,15 @@ def population(table: list[Row], **mapping: object) -> Handed:
     return Handed("population", "population.csv", content, mapped)
 
 
-def births(number: int, *, areas: Iterable[str] = ("north", "south"), sex: str = "p") -> Handed:
-    """Live births of each year, of both sexes together or of one."""
-    lines = [f"{area},{year},{sex},{number}" for area in areas for year in YEARS]
-    content = "\n".join(["area,year,sex,births", *lines]).encode()
-    mapping = Mapping(year="year", sex="sex", area="area", births="births")
+def births(
+    number: int, *, areas: Iterable[str] = ("north", "south"), sex: str = "p", **beside: int
+) -> Handed:
+    """Live births of each year, of both sexes together or of one; stillbirths and deaths before 28
+    days where they are given."""
+    counted = {"births": number, **beside}
+    numbers = ",".join(map(str, counted.values()))
+    lines = [f"{area},{year},{sex},{numbers}" for area in areas for year in YEARS]
+    content = "\n".join([",".join(["area,year,sex", *counted]), *lines]).encode()
+    columns = {name: name for name in counted}
+    mapping = Mapping(year="year", sex="sex", area="area", **columns)
     return Handed("births", "births.csv", content, mapping)

@@ -218,6 +218,13 @@ def test_infants_may_be_as_many_as_were_born(number: int, sex: str, trips: int) 
     assert found == ["infant_deaths_exceed_births"] * trips
 
 
+@pytest.mark.parametrize(("number", "trips"), [(21, False), (22, True)])
+def test_all_infant_deaths_may_be_before_28_days(number: int, trips: bool) -> None:
+    table = setting(SOUND, where(SOUND, age="0"), deaths=21)
+    found = keys(counts(table), births(4_000, sex="f", areas=("south",), neonatal_deaths=number))
+    assert set(found) == {"neonatal_deaths_exceed_infant_deaths"} if trips else found == []
+
+
 def test_a_total_may_be_off_by_rounding() -> None:
     people = [{**row, "sex": "p", "deaths": int(str(row["deaths"])) * 2} for row in WOMEN]
     for extra, trips in ((1, False), (2, True)):

@@ -289,6 +289,13 @@ def test_one_provisional_row_makes_its_year_provisional() -> None:
     ]
 
 
+def test_stillbirths_and_neonatal_deaths_come_with_births() -> None:
+    parsed = parse([counts(SOUND), births(4_000, sex="f", stillbirths=17, neonatal_deaths=9)])
+    assert parsed.problems == ()
+    for measure, count in (("births", 4_000), ("stillbirths", 17), ("neonatal_deaths", 9)):
+        assert parsed.cells[Key("south", "f", "2012", measure)].values.tolist() == [count]
+
+
 def test_births_are_of_one_age_group_and_of_persons_unless_said() -> None:
     handed = births(950)
     mapping = Mapping(year="year", area="area", births="births")
