@@ -6,19 +6,62 @@ Arrays inside this file are [age or coefficient, row], so that every step is one
 rows; a row never learns of its neighbours, and its result does not depend on them.
 """
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.special import ndtr
 
 from engine.ages import Array
+from engine.banded import added, inner, inverse, log_determinant, roughness, solve, total
 
 Places = NDArray[np.intp]
 
 PENALTIES = 10.0 ** np.arange(-1.0, 6.5, 0.5)  # from the nearly unsmoothed to a straight line
+ORDER = 2  # of the differences that are penalised
 STEPS = 60  # of Fisher scoring; rows that settle leave earlier, 4 to 8 are usual
 SETTLED = 1e-7  # a step so short is the last: the next would be about its square
+
+
+@dataclass(frozen=True, slots=True)
+class Design:
+    """The splines at some ages: at each, the first of the four that are not 0, and the four."""
+
+    size: int
+    first: Places  # [point]
+    local: Array  # [point, 4]
+
+    def along(self, coefficients: Array) -> Array:
+        """The curve at the ages: [coefficient, row] -> [point, row]."""
+        value: Array = self.local[:, 0, None] * coefficients[self.first]
+        for i in (1, 2, 3):
+            value += self.local[:, i, None] * coefficients[self.first + i]
+        return value
+
+    def back(self, values: Array) -> Array:
+        """sum_x B_x v_x: [point, row] -> [coefficient, row]."""
+        found = np.zeros((self.size, values.shape[1]), values.dtype)
+        for k, splines, v in zip(self.first, self.local, values, strict=True):
+            found[k : k + 4] += splines[:, None] * v
+        return found
+
+    def gram(self, weight: Array) -> Array:
+        """Diagonals of sum_x w_x B_x B_x': [point, row] -> [4, coefficient, row]."""
+        bands = np.zeros((4, self.size, weight.shape[1]), weight.dtype)
+        i, j = np.triu_indices(4)
+        pairs = self.local[:, i] * self.local[:, j]
+        for k, products, w in zip(self.first, pairs, weight, strict=True):
+            bands[j - i, k + i] += products[:, None] * w
+        return bands
+
+    def form(self, bands: Array) -> Array:
+        """B_x' A B_x: [4, coefficient, row] -> [point, row]."""
+        found = np.zeros((len(self.first), bands.shape[2]))
+        for d in range(4):
+            for i in range(4 - d):
+                weight = self.local[:, i] * self.local[:, i + d] * (1 if d == 0 else 2)
+                found += weight[:, None] * bands[d, self.first + i]
+        return found
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,13 +76,12 @@ class Basis:
     def size(self) -> int:
         return self.segments + 3
 
-    def at(self, ages: Array) -> tuple[Places, Array]:
-        """First of the four splines that are not 0 at each age [point], and the four [point, 4]."""
+    def at(self, ages: Array) -> Design:
         place = (np.asarray(ages) - self.low) * self.segments / (self.high - self.low)
         first = np.clip(np.floor(place), 0, self.segments - 1)
         u = place - first
         values = ((1 - u) ** 3, 3 * u**3 - 6 * u**2 + 4, 3 * (u + u**2 - u**3) + 1, u**3)
-        return first.astype(np.intp), np.stack(values, axis=-1) / 6
+        return Design(self.size, first.astype(np.intp), np.stack(values, axis=-1) / 6)
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,9 +94,84 @@ class Curve:
 
     def log_rates(self, ages: Array) -> Array:
         """[point] -> [..., point]."""
-        rows = _rows(self.coefficients)
-        values = _evaluate(*self.basis.at(ages), rows)
-        return values.T.reshape(*self.penalty.shape, len(ages))
+        return self._shaped(self.basis.at(ages).along(_rows(self.coefficients)))
+
+    def _shaped(self, values: Array) -> Array:
+        """[point, row] -> [..., point]."""
+        return values.T.reshape(*self.penalty.shape, len(values))
+
+
+@dataclass(frozen=True, slots=True)
+class Fit(Curve):
+    """A curve with the counts it was fitted to."""
+
+    ages: Array  # [age]
+    deaths: Array  # [..., age]
+    exposure: Array  # [..., age]
+
+    def pull(self, ages: Array, g: Array) -> Array:
+        """Gradient in the rates at the fitted ages, exposure and penalty held, from the gradient g
+        [..., point] in the log rates at `ages` [point].
+
+        By the implicit function theorem: the penalised score B'(D - E exp(B t)) - w P t is 0 at the
+        fit, so dt = (B' diag(fitted deaths) B + w P)^-1 B' dD.
+        """
+        moved = solve(self._information, self.basis.at(ages).back(_rows(g)))
+        return self._shaped(_rows(self.exposure) * self.basis.at(self.ages).along(moved))
+
+    def standard_errors(self, ages: Array) -> Array:
+        """Of the log rates at any ages, [point] -> [..., point]: Bayesian, (B'WB + w P)^-1.
+
+        They hold what chance in deaths moves and, on average over age, what the smoothing bends;
+        the sandwich form holds the first alone.
+        Source: Wahba (1983), Journal of the Royal Statistical Society B 45, 133-150; Marra & Wood
+                (2012), Scandinavian Journal of Statistics 39, 53-74.
+        """
+        return np.sqrt(self._shaped(self.basis.at(ages).form(inverse(self._information))))
+
+    @property
+    def dimension(self) -> Array:
+        """Effective number of coefficients, trace of (B'WB + w P)^-1 B'WB: [...]."""
+        rough = _penalty(self.basis.size, self.penalty.ravel())
+        removed = inner(inverse(self._information), rough)
+        return np.asarray(self.basis.size - removed.reshape(self.penalty.shape))
+
+    @property
+    def deviance(self) -> Array:
+        """Twice the log likelihood's distance to that of the counts themselves, [...]."""
+        deaths, fitted = _rows(self.deaths), self._fitted
+        logs = np.log(np.where(deaths > 0, deaths / fitted, 1.0))
+        return np.asarray(2 * total(deaths * logs - deaths + fitted).reshape(self.penalty.shape))
+
+    @property
+    def bic(self) -> Array:
+        """Bayesian information criterion: deviance + log(ages) * effective dimension, [...]."""
+        known = (self.exposure > 0).sum(axis=-1)
+        return np.asarray(self.deviance + np.log(known) * self.dimension)
+
+    @property
+    def evidence(self) -> Array:
+        """Minus twice the log of the likelihood of the penalty, the curve integrated out by
+        Laplace's method and a constant left out, [...].
+
+        Source: Wood (2011), Journal of the Royal Statistical Society B 73, 3-36, section 2.
+        """
+        size, weight, shape = self.basis.size, self.penalty, self.penalty.shape
+        bent = total(np.diff(_rows(self.coefficients), ORDER, axis=0) ** 2).reshape(shape)
+        volume = log_determinant(self._information).reshape(shape)
+        prior = weight * bent - (size - ORDER) * np.log(weight)
+        return np.asarray(self.deviance + prior + volume)
+
+    @property
+    def _fitted(self) -> Array:
+        """Deaths of the curve, [age, row]."""
+        logs = self.basis.at(self.ages).along(_rows(self.coefficients))
+        return np.asarray(_rows(self.exposure) * np.exp(logs))
+
+    @property
+    def _information(self) -> Array:
+        gram = self.basis.at(self.ages).gram(self._fitted)
+        return added(gram, _penalty(self.basis.size, self.penalty.ravel()))
 
 
 def fit(
@@ -64,136 +181,128 @@ def fit(
     exposure: Array,
     *,
     start: Curve | None = None,
-) -> Curve:
+) -> Fit:
     """Penalised Poisson fit of log rates: deaths ~ Poisson(exposure * exp(curve(age))).
 
     The penalty is the sum of squared second differences of the coefficients; its weight is the one
-    of PENALTIES with the least Bayesian information criterion, deviance + log(ages) * effective
-    dimension. With `start`, its weight is kept and the fit begins from its coefficients: so are
-    simulated counts fitted, whose smoothing was chosen on the counts observed.
+    of PENALTIES with the least Bayesian information criterion. With `start`, its weight is kept and
+    the fit begins from its coefficients. Complex counts keep the weight of their real parts.
 
     Shape:   ages [age], deaths, exposure [..., age], `start` broadcasts -> curves [...].
     Missing: nan in, nan out; an age with exposure of 0 has no weight; no deaths at all gives nan.
     """
-    batch = deaths.shape[:-1]
-    rows = _Rows(*basis.at(ages), _rows(deaths), _rows(np.broadcast_to(exposure, deaths.shape)))
+    if start is None:
+        tried = fit_each(basis, ages, np.real(deaths), np.real(exposure))
+        with np.errstate(all="ignore"):
+            score = tried.bic
+        start = _taken(tried, np.argmin(np.where(np.isnan(score), np.inf, score), axis=-1))
+        if not np.iscomplexobj(deaths):
+            return start
+    return _settled(ages, deaths, exposure, start)
+
+
+def fit_each(basis: Basis, ages: Array, deaths: Array, exposure: Array) -> Fit:
+    """The fit with each of PENALTIES: [..., age] -> fits [..., penalty]."""
+    shape = (*deaths.shape[:-1], len(PENALTIES))
+    deaths, exposure = (
+        np.broadcast_to(counts[..., None, :], (*shape, len(ages)))
+        for counts in (deaths, np.broadcast_to(exposure, deaths.shape))
+    )
+    begin = _first_smooth(basis, ages, deaths[..., 0, :], exposure[..., 0, :])[..., None, :]
+    start = Curve(basis, begin, np.broadcast_to(PENALTIES, shape))
+    return _settled(ages, deaths, exposure, start)
+
+
+def posterior_curves(tried: Fit, deaths: Array, noise: Array) -> Curve:
+    """Curves as the counts leave them open: a draw of the penalty by its evidence, each weight of
+    PENALTIES being as likely beforehand, then one of the curve by Laplace's method.
+
+    The penalised score moves by what the simulated deaths differ from those fitted and by normal
+    noise of the penalty's own size; so the curves spread by (B'WB + w P)^-1, and those of two
+    populations move together by the deaths that they share.
+
+    Shape:  tried [..., penalty] from `fit_each`, deaths [draw, ..., age] with the deaths fitted as
+            their mean, noise [draw, ..., coefficient - 1] standard normal -> curves [draw, ...].
+    Source: Rue, Martino & Chopin (2009), Journal of the Royal Statistical Society B 71, 319-392
+            (weights on a grid of penalties); Wahba (1983), the same B 45, 133-150 (the spread).
+    """
+    batch, basis = deaths.shape[:-1], tried.basis
+    with np.errstate(all="ignore"):
+        score = tried.evidence
+        likely = np.exp((np.fmin.reduce(score, axis=-1)[..., None] - score) / 2)
+    reach = np.cumsum(np.where(np.isnan(likely), 0.0, likely), axis=-1)
+    chance = ndtr(noise[..., :1]) * reach[..., -1:]
+    picked = np.minimum((chance > reach).sum(axis=-1), len(PENALTIES) - 1)
+    rows = np.arange(tried.penalty[..., 0].size).reshape(tried.penalty.shape[:-1])
+    where = (rows * len(PENALTIES) + picked).ravel()
+    weight = tried.penalty.reshape(-1)[where]
+    residual = basis.at(tried.ages).back(_rows(deaths - tried.deaths[..., 0, :]))
+    padded = np.pad(_rows(noise[..., 1:]), ((ORDER, ORDER), (0, 0)))
+    with np.errstate(all="ignore"):
+        right = residual + np.sqrt(weight) * np.diff(padded, ORDER, axis=0)
+        moved = solve(tried._information[:, :, where], right)
+    curves = _rows(tried.coefficients)[:, where] + moved
+    return Curve(basis, curves.T.reshape(*batch, basis.size), weight.reshape(batch))
+
+
+def _taken(tried: Fit, best: Places) -> Fit:
+    """Of the last axis of the batch, one each."""
+
+    def take(array: Array) -> Array:
+        at = np.expand_dims(best, tuple(range(best.ndim, array.ndim)))
+        return np.take_along_axis(array, at, axis=best.ndim).squeeze(best.ndim)
+
+    parts = (tried.coefficients, tried.penalty, tried.deaths, tried.exposure)
+    coefficients, penalty, deaths, exposure = (take(part) for part in parts)
+    return Fit(tried.basis, coefficients, penalty, tried.ages, deaths, exposure)
+
+
+def _first_smooth(basis: Basis, ages: Array, deaths: Array, exposure: Array) -> Array:
+    """Coefficients of a first smooth through the crude log rates, half a death added."""
+    counts, years, design = _rows(deaths), _rows(exposure), basis.at(ages)
+    with np.errstate(all="ignore"):  # without deaths there is no first smooth, and no last
+        overall = total(counts) / total(years)
+        logs = np.log((counts + 0.5) / (years + 0.5 / overall))
+        fitted = years * np.exp(logs)
+        bands = added(design.gram(fitted), _penalty(basis.size, np.ones(1)))
+        begin = solve(bands, design.back(fitted * logs))
+    return begin.T.reshape(*deaths.shape[:-1], basis.size)
+
+
+def _settled(ages: Array, deaths: Array, exposure: Array, start: Curve) -> Fit:
+    """Fisher scoring at the penalty of `start` until each row's coefficients stand still."""
+    batch, basis = deaths.shape[:-1], start.basis
+    exposure = np.broadcast_to(exposure, deaths.shape)
+    penalty = np.array(np.broadcast_to(start.penalty, batch))
+    kind = np.result_type(deaths, exposure, start.coefficients)
+    found = _rows(np.broadcast_to(start.coefficients, (*batch, basis.size))).astype(kind)
+    counts, years, weight = _rows(deaths), _rows(exposure), penalty.ravel()
+    design, left = basis.at(ages), np.arange(found.shape[1])
     with np.errstate(all="ignore"):  # rows that cannot be fitted end as nan
-        if start is not None:
-            penalty = np.broadcast_to(start.penalty, batch).reshape(-1)
-            begin = _rows(np.broadcast_to(start.coefficients, (*batch, basis.size)))
-            found = rows.settle(penalty, begin)
-        else:
-            many = len(PENALTIES)  # each row is fitted once with every penalty
-            tiled = np.tile(PENALTIES, rows.deaths.shape[1])
-            rows = rows.take(np.repeat(np.arange(rows.deaths.shape[1]), many))
-            tried = rows.settle(tiled, rows.begin(basis.size))
-            score = rows.criterion(tiled, tried).reshape(-1, many)
-            best = np.argmin(np.where(np.isnan(score), np.inf, score), axis=1)
-            chosen = np.arange(len(best)) * many + best
-            found, penalty = tried[:, chosen], tiled[chosen]
-    return Curve(basis, found.T.reshape(*batch, basis.size), penalty.reshape(batch))
-
-
-@dataclass(frozen=True, slots=True)
-class _Rows:
-    """Counts to fit, and where their ages stand on the basis."""
-
-    first: Places
-    local: Array  # [age, 4]
-    deaths: Array  # [age, row]
-    exposure: Array
-
-    def take(self, rows: Places) -> "_Rows":
-        return _Rows(self.first, self.local, self.deaths[:, rows], self.exposure[:, rows])
-
-    def begin(self, size: int) -> Array:
-        """Coefficients of a first smooth through the crude log rates, half a death added."""
-        overall = self.deaths.sum(axis=0) / self.exposure.sum(axis=0)
-        logs = np.log((self.deaths + 0.5) / (self.exposure + 0.5 / overall))
-        fitted = self.exposure * np.exp(logs)
-        bands = self._bands(fitted, size) + _penalty(size, np.ones(1))
-        return _solve(bands, self._weighted(fitted * logs, size))
-
-    def settle(self, penalty: Array, begin: Array) -> Array:
-        """Fisher scoring until each row's log rates stand still: [coefficient, row]."""
-        found, size = begin.copy(), len(begin)
-        left = np.arange(found.shape[1])
         for _ in range(STEPS):
-            rows, old = self.take(left), found[:, left]
-            logs = _evaluate(self.first, self.local, old)
-            fitted = rows.exposure * np.exp(logs)
-            bands = self._bands(fitted, size) + _penalty(size, penalty[left])
-            new = _solve(bands, self._weighted(rows.deaths - fitted + fitted * logs, size))
+            old = found[:, left]
+            new = _step(design, counts[:, left], years[:, left], weight[left], old)
             found[:, left] = new
             left = left[np.max(np.abs(new - old), axis=0) > SETTLED]  # nan rows stay nan
             if not left.size:
-                return found
-        found[:, left] = np.nan
-        return found
+                break
+        if np.iscomplexobj(found):  # an imaginary part settles one step behind its real part
+            found = _step(design, counts, years, weight, found)
+    found[:, left] = np.nan
+    return Fit(basis, found.T.reshape(*batch, basis.size), penalty, ages, deaths, exposure)
 
-    def criterion(self, penalty: Array, found: Array) -> Array:
-        """Bayesian information criterion of fitted rows: [row]."""
-        size, deaths = len(found), self.deaths
-        fitted = self.exposure * np.exp(_evaluate(self.first, self.local, found))
-        logs = np.where(deaths > 0, np.log(deaths / fitted), 0.0)
-        deviance = 2 * (deaths * logs - deaths + fitted).sum(axis=0)
-        rough = _penalty(size, penalty)
-        full = np.zeros((size, size, len(penalty)))
-        for d in range(3):
-            for k in range(size - d):
-                full[k, k + d] = full[k + d, k] = rough[d, k]
-        removed = np.trace(_solve(self._bands(fitted, size) + rough, full))
-        return np.asarray(deviance + np.log((self.exposure > 0).sum(axis=0)) * (size - removed))
 
-    def _bands(self, weight: Array, size: int) -> Array:
-        """Diagonals of sum_x w_x B_x B_x': [4, coefficient, row], [d, k] is that of (k, k + d)."""
-        bands = np.zeros((4, size, weight.shape[1]))
-        for k, splines, w in zip(self.first, self.local, weight, strict=True):
-            for d in range(4):
-                bands[d, k : k + 4 - d] += (splines[: 4 - d] * splines[d:])[:, None] * w
-        return bands
+def _step(design: Design, deaths: Array, exposure: Array, weight: Array, old: Array) -> Array:
+    logs = design.along(old)
+    fitted = exposure * np.exp(logs)
+    bands = added(design.gram(fitted), _penalty(design.size, weight))
+    return solve(bands, design.back(deaths - fitted + fitted * logs))
 
-    def _weighted(self, values: Array, size: int) -> Array:
-        """sum_x B_x v_x: [coefficient, row]."""
-        total = np.zeros((size, values.shape[1]))
-        for k, splines, v in zip(self.first, self.local, values, strict=True):
-            total[k : k + 4] += splines[:, None] * v
-        return total
+
+def _penalty(size: int, weight: Array) -> Array:
+    return np.asarray(roughness(size, ORDER)[:, :, None] * weight)
 
 
 def _rows(array: Array) -> Array:
     """[..., age] -> [age, row], a copy in that order."""
     return np.ascontiguousarray(array.reshape(-1, array.shape[-1]).T)
-
-
-def _evaluate(first: Places, local: Array, coefficients: Array) -> Array:
-    value: Array = local[:, 0, None] * coefficients[first]
-    for i in (1, 2, 3):
-        value += local[:, i, None] * coefficients[first + i]
-    return value
-
-
-def _penalty(size: int, weight: Array) -> Array:
-    """Weight times D'D, D the second differences, as diagonals: [4, coefficient, row]."""
-    differences = np.diff(np.eye(size), 2, axis=0)
-    square = differences.T @ differences
-    diagonals: Sequence[Array] = [np.append(np.diag(square, d), np.zeros(d)) for d in range(4)]
-    return np.stack(diagonals)[:, :, None] * weight
-
-
-def _solve(bands: Array, right: Array) -> Array:
-    """Solve symmetric systems given by their diagonals, by elimination without pivots.
-
-    bands [4, coefficient, row], right [coefficient, ..., row] -> the same as right.
-    """
-    upper, value, size = bands.copy(), right.copy(), bands.shape[1]
-    for k in range(size):
-        for d in range(1, min(4, size - k)):
-            ratio = upper[d, k] / upper[0, k]
-            upper[: 4 - d, k + d] -= ratio * upper[d:, k]
-            value[k + d] -= ratio * value[k]
-    for k in reversed(range(size)):
-        for d in range(1, min(4, size - k)):
-            value[k] -= upper[d, k] * value[k + d]
-        value[k] /= upper[0, k]
-    return value

@@ -1,5 +1,6 @@
 """The most common age at death of adults, read in three ways."""
 
+import hashlib
 from dataclasses import dataclass
 
 import numpy as np
@@ -9,10 +10,10 @@ from engine.chain import Chain
 from engine.estimates import Reason
 from engine.indicator import Indicator, Needs
 from engine.indicators.expectancy import YEARS
-from engine.smoothing import Basis, Curve, fit
+from engine.smoothing import Curve, fit, fit_each, posterior_curves
+from engine.stages.smoothing import LEAST_GROUPS, adult_counts, adult_groups
+from engine.streams import generator
 
-ADULT = 10  # deaths of infants and small children are another peak
-KNOTS = 5  # years between the knots of the smooth curve
 STEP = 0.2  # years between the ages at which the curve is read; finds its peak to 0.004
 
 
@@ -25,13 +26,8 @@ class _Deaths:
     density: Array  # [..., group]
 
 
-def _adult(chain: Chain) -> slice:
-    starts = chain.panel.grid.starts
-    return slice(sum(start < ADULT for start in starts), len(starts) - 1)
-
-
 def _deaths(chain: Chain) -> _Deaths:
-    groups = _adult(chain)
+    groups = adult_groups(chain.panel.grid)
     widths = chain.panel.grid.widths[groups]
     starts = np.array(chain.panel.grid.starts, float)[groups]
     return _Deaths(starts, widths, chain.table.dx[..., groups] / widths)
@@ -64,17 +60,6 @@ def _parabola(chain: Chain) -> Array:
     return np.where(inner & equal & np.isfinite(age), age, np.nan)
 
 
-def _curve(chain: Chain, start: Curve | None = None) -> Curve | None:
-    """Smooth death rates of the closed adult groups; None where there are fewer than four."""
-    grid, groups, rates = chain.panel.grid, _adult(chain), chain.rates
-    if groups.stop - groups.start < 4:
-        return None
-    low, high = grid.starts[groups.start], grid.open_age
-    basis = Basis(low, high, max(4, round((high - low) / KNOTS)))
-    exposure = rates.exposure[..., groups]
-    return fit(basis, grid.mids[groups], rates.mx[..., groups] * exposure, exposure, start=start)
-
-
 def _peak(curve: Curve) -> Array:
     """Where l(x) mu(x) is greatest; nan where that is at an end of the curve."""
     basis = curve.basis
@@ -96,13 +81,36 @@ def _peak(curve: Curve) -> Array:
 
 
 def _smooth(chain: Chain) -> Array:
-    curve = _curve(chain)
-    return np.full(chain.panel.batch_shape, np.nan) if curve is None else _peak(curve)
+    if _few(chain):
+        return np.full(chain.panel.batch_shape, np.nan)
+    return _peak(fit(*adult_counts(chain.panel.grid, chain.rates)))
 
 
 def _smooth_redraw(observed: Chain, simulated: Chain) -> Array:
-    curve = _curve(simulated, start=_curve(observed))
-    return np.full(simulated.panel.batch_shape, np.nan) if curve is None else _peak(curve)
+    """Peaks of curves as the counts leave them open, [draw, ...]."""
+    if _few(observed):
+        return np.full(simulated.panel.batch_shape, np.nan)
+    tried = fit_each(*adult_counts(observed.panel.grid, observed.rates))
+    deaths = adult_counts(simulated.panel.grid, simulated.rates).deaths
+    return _peak(posterior_curves(tried, deaths, _noise(deaths, tried.basis.size - 1)))
+
+
+def _noise(deaths: Array, many: int) -> Array:
+    """Normal numbers [draw, ..., many], a stream for each population keyed by its simulated deaths
+    [draw, ..., age], which come from a stream of its own: so is this one its own, too."""
+    rows = np.ascontiguousarray(
+        np.moveaxis(deaths.reshape(len(deaths), -1, deaths.shape[-1]), 1, 0)
+    )
+    noise = np.empty((len(deaths), len(rows), many))
+    for row, counts in enumerate(rows):
+        stream = generator("roughness", hashlib.sha256(counts.tobytes()).hexdigest())
+        noise[:, row] = stream.standard_normal((len(deaths), many))
+    return noise.reshape(*deaths.shape[:-1], many)
+
+
+def _few(chain: Chain) -> bool:
+    groups = adult_groups(chain.panel.grid)
+    return bool(groups.stop - groups.start < LEAST_GROUPS)
 
 
 NEEDS = Needs(open_small=True, otherwise=Reason.MODE_AT_EDGE)
@@ -117,8 +125,8 @@ FAMILY = (
             "The age above 10 at which most people would die if the death rates of the year held"
             " for all their lives, read off a smooth curve through the death rates of the closed"
             " age groups from 10. Each group stands at its middle, which in groups of five years"
-            " moves the age by one or two tenths of a year. Its interval takes the smoothing as"
-            " given."
+            " moves the age by one or two tenths of a year. Its interval allows for chance and"
+            " for not knowing how smooth the curve should be."
         ),
         formula=(
             "the x with the greatest l(x) mu(x); log mu(x) a cubic B-spline with a knot every five"
@@ -127,7 +135,9 @@ FAMILY = (
         ),
         source=(
             "Eilers & Marx (1996), Statistical Science 11, 89-121 (the curve); Ouellette &"
-            " Bourbeau (2011), Demographic Research 25, 595-628 (its use for the mode)"
+            " Bourbeau (2011), Demographic Research 25, 595-628 (its use for the mode); Rue,"
+            " Martino & Chopin (2009), Journal of the Royal Statistical Society B 71, 319-392 (the"
+            " interval: curves drawn from what the counts leave open)"
         ),
         why_not_smooth=(
             "A small change of a death rate can move the highest point of a curve from one hump to"

@@ -43,11 +43,11 @@ def dense_fit(deaths: np.ndarray, years: np.ndarray, weight: float) -> tuple[np.
 
 def test_the_splines_are_those_of_the_library() -> None:
     ages = np.linspace(10, 99.99, 301)
-    first, local = BASIS.at(ages)
+    design = BASIS.at(ages)
     full = np.zeros((len(ages), BASIS.size))
-    np.put_along_axis(full, first[:, None] + np.arange(4), local, axis=1)
+    np.put_along_axis(full, design.first[:, None] + np.arange(4), design.local, axis=1)
     np.testing.assert_allclose(full, dense_basis(ages), atol=1e-12)
-    assert BASIS.at(np.array([100.0]))[1].sum() == pytest.approx(1)
+    assert BASIS.at(np.array([100.0])).local.sum() == pytest.approx(1)
 
 
 @pytest.mark.parametrize("people", [20_000, 5_000_000])

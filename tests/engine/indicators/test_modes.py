@@ -9,9 +9,11 @@ from scipy.optimize import brentq
 from engine.ages import AgeGrid
 from engine.chain import run
 from engine.indicators import INDICATORS, estimate
-from engine.indicators.modes import _curve, _peak
+from engine.indicators.modes import _noise, _peak
+from engine.panel import Panel
 from engine.settings import SETTINGS
 from engine.smoothing import Basis, fit
+from engine.streams import poisson_draws
 from tests.factories import GRIDS, codes, gompertz_panel
 
 SETTINGS_1 = SETTINGS["almanac-1"]
@@ -46,12 +48,36 @@ def test_the_peak_is_where_the_curve_of_deaths_is_highest() -> None:
     assert MODE.value(run(panel, SETTINGS_1)) == _peak(curve)
 
 
-def test_simulated_peaks_keep_the_smoothing_of_the_observed_counts() -> None:
-    observed, other = (run(gompertz_panel(people=100_000, seed=n), SETTINGS_1) for n in (4, 5))
-    assert MODE.drawn(observed, observed) == pytest.approx(MODE.value(observed), abs=1e-6)
-    kept, own = _curve(other, start=_curve(observed)), _curve(other)
-    assert kept.penalty == _curve(observed).penalty != own.penalty
-    assert MODE.drawn(observed, other) == _peak(kept) != MODE.value(other)
+def simulated(panel: Panel, name: str, draws: int = 200) -> Panel:
+    deaths = poisson_draws(panel.deaths, codes(panel, name), draws, "example")
+    shape = deaths.shape[:-1]
+    parts = {
+        part: np.broadcast_to(getattr(panel, part), (*shape, getattr(panel, part).shape[-1]))
+        for part in ("exposure", "infant_weight", "infant_ratio")
+    }
+    return replace(panel, deaths=deaths, **parts)
+
+
+def test_simulated_peaks_spread_as_the_counts_leave_them_open() -> None:
+    panel = gompertz_panel(people=1e6, seed=4)
+    observed = run(panel, SETTINGS_1)
+    peaks = MODE.drawn(observed, run(simulated(panel, "isle"), SETTINGS_1))
+    assert np.isfinite(peaks).all()
+    assert np.median(peaks) == pytest.approx(MODE.value(observed), abs=0.3)
+    again = MODE.drawn(observed, run(simulated(panel, "isle"), SETTINGS_1))
+    np.testing.assert_array_equal(again, peaks)
+
+
+def test_noise_is_each_populations_own() -> None:
+    """Two with the same counts and streams of their own move apart; the same stream, together."""
+    deaths = np.random.default_rng(3).poisson(40.0, (2000, 3, 6)).astype(float)
+    deaths[:, 2] = deaths[:, 0]
+    noise = _noise(deaths, 4)
+    np.testing.assert_array_equal(noise[:, 2], noise[:, 0])
+    np.testing.assert_array_equal(_noise(deaths[:, 1], 4), noise[:, 1])
+    together = np.corrcoef(noise[:, :2].reshape(2000, -1).T)
+    np.testing.assert_allclose(together, np.eye(8), atol=0.1)
+    np.testing.assert_allclose(noise.std(axis=0), 1, atol=0.06)
 
 
 def test_infants_and_the_open_group_are_no_adult_mode() -> None:
