@@ -4,6 +4,7 @@ import numpy as np
 
 from engine.ages import Array
 from engine.chain import Chain
+from engine.estimates import Reason
 from engine.indicator import Indicator, Needs, Unit
 from engine.standardisation import Weighted
 from engine.standards.remaining_years import GBD_2010
@@ -52,7 +53,7 @@ def before_age(age: int) -> Indicator:
             f" International Journal of Epidemiology 6, 143-151; {LIMITS}"
         ),
         why_not_smooth="",
-        needs=Needs(ages=(age,)),
+        needs=Needs(ages=(age,), otherwise=Reason.AGE_NOT_ON_GRID),
         value=value,
         partials=gradient,
     )
