@@ -1,0 +1,63 @@
+"""The search's parts: elimination against LAPACK, sums, steps that must be held back."""
+
+import numpy as np
+import pytest
+
+from engine.hazards import GOMPERTZ, points
+from engine.likelihood import Rows, climb, solve, total
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize("size", [2, 3, 5])
+def test_elimination_agrees_with_lapack(size: int) -> None:
+    rng = np.random.default_rng(size)
+    root = rng.normal(size=(7, size, size))
+    matrix = root @ np.swapaxes(root, -1, -2) + 0.1 * np.eye(size)
+    right = rng.normal(size=(7, size))
+    found, positive = solve(matrix, right)
+    np.testing.assert_allclose(found, np.linalg.solve(matrix, right[..., None])[..., 0], rtol=1e-9)
+    assert positive.all()
+
+
+@pytest.mark.fast
+def test_which_matrices_are_positive_definite() -> None:
+    """A singular or indefinite one is said to be so and stops no other."""
+    singular, indefinite = np.ones((2, 2)), np.array([[1.0, 2.0], [2.0, 1.0]])
+    with np.errstate(all="ignore"):
+        found, positive = solve(np.stack([singular, indefinite, np.eye(2)]), np.array([1.0, 2.0]))
+    assert positive.tolist() == [False, False, True]
+    np.testing.assert_array_equal(found[2], [1.0, 2.0])
+
+
+@pytest.mark.fast
+def test_a_sum_does_not_depend_on_the_layout() -> None:
+    values = np.random.default_rng(0).normal(size=(50, 103))
+    np.testing.assert_array_equal(total(np.asfortranarray(values)), total(values))
+    np.testing.assert_array_equal(total(values[7]), total(values)[7])
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize("start", [(-2.0, 0.1), (3.0, 0.1), (-20.0, 0.4), (-2.0, -0.3)])
+def test_the_top_is_found_from_afar(start: tuple[float, float]) -> None:
+    ages = np.arange(60.5, 95)
+    exposure = np.full((1, len(ages)), 1e4)
+    truth = np.array([-3.0, 0.11])
+    deaths = exposure * np.exp(truth[0] + truth[1] * (ages - 80))
+    rows = Rows(GOMPERTZ, points(ages, 80.0), deaths, exposure)
+    rows = Rows(GOMPERTZ, type(rows.groups)(ages, 0 * ages, 0 * exposure, 80.0), deaths, exposure)
+    with np.errstate(all="ignore"):
+        found = climb(rows, np.array([start]), np.zeros((1, 2), bool))
+    np.testing.assert_allclose(found[0], truth, rtol=1e-11)
+
+
+@pytest.mark.fast
+def test_a_held_parameter_stays() -> None:
+    ages = np.arange(60.5, 95)
+    exposure = np.full((1, len(ages)), 1e4)
+    deaths = exposure * np.exp(-3.0 + 0.11 * (ages - 80))
+    groups = points(ages, 80.0)
+    rows = Rows(GOMPERTZ, type(groups)(ages, 0 * ages, 0 * exposure, 80.0), deaths, exposure)
+    with np.errstate(all="ignore"):
+        found = climb(rows, np.array([[-2.0, 0.08]]), np.array([[False, True]]))
+    level = np.log(deaths.sum() / (exposure * np.exp(0.08 * (ages - 80))).sum())
+    np.testing.assert_allclose(found[0], [level, 0.08], rtol=1e-11)
