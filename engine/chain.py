@@ -1,10 +1,11 @@
 """The chain of stages that turns a panel into a life table, and its pullback to the raw rates."""
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Protocol
 
 import numpy as np
+from numpy.typing import NDArray
 
 from engine.ages import Array
 from engine.panel import Panel
@@ -12,6 +13,7 @@ from engine.settings import Settings
 from engine.stages.open_interval import OPEN_INTERVALS, Closed
 from engine.stages.rates import Rates, death_rates, given_rates
 from engine.stages.separation import Separation, separate
+from engine.stages.smoothing import SMOOTHINGS, Smoothed
 from engine.tables import LifeTable, Partials, from_rates
 from engine.tables import pull as pull_table
 
@@ -26,7 +28,8 @@ class Chain:
 
     panel: Panel
     settings: Settings
-    rates: Rates
+    rates: Rates  # as counted
+    smoothed: Smoothed
     closed: Closed
     separation: Separation
     table: LifeTable
@@ -37,6 +40,30 @@ class Chain:
         return self.closed.law_from is not None
 
     @property
+    def borrowed(self) -> NDArray[np.bool_]:
+        """Whether the rate of the open group is that of the whole, [...]."""
+        return self.closed.borrowed
+
+    @property
+    def mx(self) -> Array:
+        """The rates that the table rests on, on the panel's grid: as counted, and that of the open
+        group as borrowed where it is. `run` with these as `mx` gives the same table."""
+        own, last = self.rates.mx, self.closed.mx[..., -1:]
+        return np.where(
+            self.borrowed[..., None] & (np.arange(own.shape[-1]) == own.shape[-1] - 1), last, own
+        )
+
+    @property
+    def open_too_low(self) -> bool:
+        """Whether the open group begins too low to be closed by its own death rate at all."""
+        return not self.modelled and self.panel.grid.open_age < self.settings.least_open_age
+
+    @property
+    def open_low(self) -> bool:
+        """Whether it begins so low that expectations of life closed by its rate need a caution."""
+        return not self.modelled and self.panel.grid.open_age < self.settings.sound_open_age
+
+    @property
     def open_reach(self) -> Array:
         """Share of births that reach the open age of the panel's grid, [...]."""
         return self.table.lx[..., len(self.panel.grid) - 1]
@@ -44,7 +71,8 @@ class Chain:
     def pull(self, partials: Partials) -> Array:
         """Gradient in the raw mx of the panel's grid, exposure held, from partials by column."""
         g = pull_table(self.table, partials)
-        return self.rates.pull(self.closed.pull(g.mx + self.separation.pull(g.ax)))
+        by_closed = self.closed.pull(g.mx + self.separation.pull(g.ax))
+        return self.rates.pull(self.smoothed.pull(by_closed))
 
 
 @dataclass(frozen=True, slots=True)
@@ -112,7 +140,9 @@ def run(panel: Panel, settings: Settings, *, mx: Array | None = None) -> Chain:
         rates = death_rates(np.ascontiguousarray(deaths), exposure)
     else:
         rates = given_rates(np.ascontiguousarray(mx), exposure)
-    closed = OPEN_INTERVALS[settings.open_interval](panel.grid, rates, settings)
+    smoothed = SMOOTHINGS[settings.smoothing](panel.grid, rates, settings)
+    read = replace(rates, mx=smoothed.mx)
+    closed = OPEN_INTERVALS[settings.open_interval](panel, read, settings)
     separation = separate(closed, panel.infant_weight, panel.infant_ratio, settings)
     table = from_rates(closed.grid, closed.mx, separation.ax)
-    return Chain(panel, settings, rates, closed, separation, table)
+    return Chain(panel, settings, rates, smoothed, closed, separation, table)

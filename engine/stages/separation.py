@@ -6,6 +6,7 @@ import numpy as np
 
 from engine.ages import AgeGrid, Array
 from engine.settings import Settings
+from engine.stages.inside import INSIDE, Lived, Neighbours, constant_rate, iterate
 from engine.stages.open_interval import Closed
 
 Pieces = tuple[tuple[float, float, float], ...]  # (infant rate from which, intercept, slope)
@@ -16,13 +17,28 @@ ANDREEV_KINGKADE: tuple[Pieces, Pieces] = (
     ((0.0, 0.14903, -2.05527), (0.01724, 0.04667, 3.88089), (0.06891, 0.31411, 0.0)),
     ((0.0, 0.14929, -1.99545), (0.02300, 0.02832, 3.26021), (0.08307, 0.29915, 0.0)),
 )
-# Coale & Demeny (1983), West, as printed in Preston, Heuveline & Guillot (2001), table 3.3.
+# Coale & Demeny (1983), West, as printed in Preston, Heuveline & Guillot (2001), table 3.3. At the
+# break of 0.107 a0 steps down, by 0.0026 of a year (women) and 0.0022 (men), and a(1-4) up, by
+# 0.0014 and 0.0023; the slopes fall to 0; at the break itself the piece above it holds.
+COALE_DEMENY_FIRST: tuple[Pieces, Pieces] = (
+    ((0.0, 0.053, 2.8), (0.107, 0.35, 0.0)),
+    ((0.0, 0.045, 2.684), (0.107, 0.33, 0.0)),
+)
 COALE_DEMENY: tuple[Pieces, Pieces] = (
     ((0.0, 1.522, -1.518), (0.107, 1.361, 0.0)),
     ((0.0, 1.651, -2.816), (0.107, 1.352, 0.0)),
 )
-FIRST_YEAR = {"andreev_kingkade": ANDREEV_KINGKADE}
-CHILD = {"coale_demeny": COALE_DEMENY}
+HALF_A_YEAR: tuple[Pieces, Pieces] = (((0.0, 0.5, 0.0),), ((0.0, 0.5, 0.0),))
+TWO_YEARS: tuple[Pieces, Pieces] = (((0.0, 2.0, 0.0),), ((0.0, 2.0, 0.0),))
+CONSTANT_RATE: tuple[Pieces, Pieces] = ((), ())  # not read off the infant rate, and broken nowhere
+
+FIRST_YEAR = {
+    "andreev_kingkade": ANDREEV_KINGKADE,
+    "coale_demeny": COALE_DEMENY_FIRST,
+    "midpoint": HALF_A_YEAR,
+    "constant_rate": CONSTANT_RATE,
+}
+CHILD = {"coale_demeny": COALE_DEMENY, "midpoint": TWO_YEARS, "constant_rate": CONSTANT_RATE}
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,6 +48,7 @@ class Separation:
     ax: Array
     own: Array  # d ax / d mx of the same group
     child: Array | None  # d a(1-4) / d m0, where it is not capped
+    neighbours: Neighbours | None  # groups whose ax the groups beside them move
 
     def pull(self, g: Array) -> Array:
         """Gradient in mx from the gradient in ax."""
@@ -39,6 +56,8 @@ class Separation:
             out = np.where(g == 0, 0.0, g * self.own)
         if self.child is not None:
             out[..., 0] += g[..., 1] * self.child
+        if self.neighbours is not None:
+            out[..., :-1] += self.neighbours.pull(g[..., :-1])
         return out
 
 
@@ -47,37 +66,29 @@ def separate(closed: Closed, weight: Array, ratio: Array, settings: Settings) ->
 
     First year of life, where it is a group: the rule of each sex at that sex's infant rate
     (ratio * m0), weighted. Ages 1-4, where they are a group: the rule for them, also from m0.
-    Otherwise half the width; 1 / m in the open group; in the single years of a law the rate is
-    constant within the year, ax = 1 / m - n / (exp(n m) - 1).
+    Otherwise the settings' rule for the inside of groups; 1 / m in the open group; in the single
+    years of a law the rate is constant within the year.
 
     A group cannot lose more than enter it: where ax would make qx pass 1 (ax mx > 1), ax = 1 / mx
     and qx = 1, so that the table still has the rate that was observed.
 
     Shape:   weight, ratio [..., 2], women and men; -> [..., age].
     Missing: an open group without deaths has no 1 / m: nan.
-    Source:  Andreev & Kingkade (2015); Coale & Demeny (1983).
+    Source:  Andreev & Kingkade (2015); Coale & Demeny (1983); those of engine/stages/inside.py.
     """
-    grid, mx, n = closed.grid, closed.mx, closed.grid.widths
-    ax = np.broadcast_to(np.append(n[:-1] / 2, np.nan), mx.shape).astype(mx.dtype)
-    own, child = np.zeros_like(ax), None
-    if closed.law_from is not None:
-        within = slice(closed.law_from, -1)
-        ax[..., within], own[..., within] = _constant_rate(n[within], mx[..., within])
-    if has_first_year(grid):
-        pieces = FIRST_YEAR[settings.first_year]
-        ax[..., 0], own[..., 0] = _by_infant_rate(pieces, mx[..., 0], weight, ratio)
-    if has_child_group(grid):
-        pieces = CHILD[settings.child]
-        ax[..., 1], child = _by_infant_rate(pieces, mx[..., 0], weight, ratio)
+    n, m, last = closed.grid.widths[:-1], closed.mx[..., :-1], closed.mx[..., -1:]
+    lived, child = _by_rule(closed, weight, ratio, settings)
     with np.errstate(all="ignore"):
-        full = np.real(ax) * np.real(mx) > 1
-        full[..., -1] = True
-        empty = np.real(mx) == 0
-        ax = np.where(full, np.where(empty, np.nan, 1 / mx), ax)
-        own = np.where(full, np.where(empty, np.nan, -1 / mx**2), own)
+        full, empty = np.real(lived.ax) * np.real(m) > 1, np.real(last) == 0
+        ax, own = np.where(full, 1 / m, lived.ax), np.where(full, -1 / m**2, lived.slope)
+        above, slope = (np.where(empty, np.nan, part) for part in (1 / last, -1 / last**2))
     if child is not None:
         child = np.where(full[..., 1], 0.0, child)
-    return Separation(ax, own, child)
+    neighbours = iterate(n, m, Lived(ax, own)) if settings.inside == "keyfitz" else None
+    if neighbours is not None:
+        ax, own = neighbours.ax, neighbours.own
+    ax, own = (np.concatenate(part, axis=-1) for part in ((ax, above), (own, slope)))
+    return Separation(ax, own, child, neighbours)
 
 
 def has_first_year(grid: AgeGrid) -> bool:
@@ -88,9 +99,41 @@ def has_child_group(grid: AgeGrid) -> bool:
     return grid.starts[:3] == (0, 1, 5)
 
 
-def _by_infant_rate(
-    rules: tuple[Pieces, Pieces], m0: Array, weight: Array, ratio: Array
-) -> tuple[Array, Array]:
+def _by_rule(
+    closed: Closed, weight: Array, ratio: Array, settings: Settings
+) -> tuple[Lived, Array | None]:
+    """ax of the closed groups as the rules have it, before any bound, with its slope in the own
+    rate; and the slope of a(1-4) in m0 where it is read off that."""
+    grid, m, child = closed.grid, closed.mx[..., :-1], None
+    n = grid.widths[:-1]
+    inside = INSIDE[settings.inside](n, m)
+    ax, own = inside.ax, inside.slope
+    if closed.law_from is not None:
+        within = slice(closed.law_from, None)
+        steady = constant_rate(n[within], m[..., within])
+        ax[..., within], own[..., within] = steady.ax, steady.slope
+    if has_first_year(grid):
+        first = _early(FIRST_YEAR[settings.first_year], n[0], m[..., 0], m[..., 0], weight, ratio)
+        ax[..., 0], own[..., 0] = first.ax, first.slope
+    if has_child_group(grid):
+        rule = CHILD[settings.child]
+        found = _early(rule, n[1], m[..., 1], m[..., 0], weight, ratio)
+        ax[..., 1] = found.ax
+        own[..., 1], child = (found.slope, None) if rule is CONSTANT_RATE else (0.0, found.slope)
+    return Lived(ax, own), child
+
+
+def _early(
+    rule: tuple[Pieces, Pieces], n: float, m: Array, m0: Array, weight: Array, ratio: Array
+) -> Lived:
+    """A group of the first years: of a constant rate, with the slope in its own rate, or by the
+    infant rate, with the slope in that."""
+    if rule is CONSTANT_RATE:
+        return constant_rate(n, m)
+    return _by_infant_rate(rule, m0, weight, ratio)
+
+
+def _by_infant_rate(rules: tuple[Pieces, Pieces], m0: Array, weight: Array, ratio: Array) -> Lived:
     """Mean of the sexes' rules and its derivative in m0."""
     value, slope = np.zeros_like(m0), np.zeros_like(m0)
     for sex, pieces in enumerate(rules):
@@ -104,18 +147,4 @@ def _by_infant_rate(
                 here = np.where(above, intercept + gradient * rate, here)
                 bend = np.where(above, gradient, bend)
         value, slope = value + w * here, slope + w * r * bend
-    return value, slope
-
-
-def _constant_rate(n: Array, m: Array) -> tuple[Array, Array]:
-    """ax and its derivative where the rate is constant within the group."""
-    y = n * m
-    with np.errstate(all="ignore"):
-        odds = 1 / np.expm1(y)
-        share, slope = 1 / y - odds, odds * (1 + odds) - 1 / y**2
-        # near 0 the difference of the two cancels; this is its power series
-        near = np.abs(y) < 0.1
-        y2 = y * y
-        series = 0.5 - y / 12 * (1 - y2 / 60 * (1 - y2 / 42 * (1 - y2 / 40)))
-        bend = -1 / 12 + y2 / 240 * (1 - y2 / 25.2 * (1 - y2 * 7 / 200))
-    return n * np.where(near, series, share), n * n * np.where(near, bend, slope)
+    return Lived(value, slope)

@@ -13,6 +13,7 @@ from tests.factories import GRIDS, gompertz_panel, persons_panel
 
 E0 = indicator("e0")
 ALL_SETTINGS = pytest.mark.parametrize("settings", SETTINGS.values(), ids=SETTINGS)
+LOCAL = [one for one in SETTINGS.values() if one.inside != "keyfitz" and one.smoothing == "none"]
 ALL_GRIDS = pytest.mark.parametrize("grid", GRIDS.values(), ids=GRIDS)
 INFANTS = (0.005, 0.03, 0.12)  # one in each piece of the first-year rules
 
@@ -116,17 +117,19 @@ def test_a_law_needs_three_closed_groups_and_rates_that_rise() -> None:
 
 
 @pytest.mark.fast
-@ALL_SETTINGS
+@pytest.mark.parametrize("settings", LOCAL, ids=lambda s: s.key)
 def test_what_an_indicator_does_not_read_passes_no_nan_on(settings: Settings) -> None:
-    """45q15 keeps its gradient where the oldest rates are missing and no law can be fitted."""
+    """45q15 keeps its gradient where the oldest rates are missing and no law can be fitted, in the
+    chains in which no age group reads another."""
     whole, short = gompertz_panel(seed=8), gompertz_panel(AgeGrid((0, 1, *range(5, 85, 5))), seed=8)
     gap = gompertz_panel(seed=8)
     gap.deaths[-4:] = np.nan
     expected = gradient(indicator("45q15"), run(whole, settings))
-    assert np.count_nonzero(expected) == 9
+    rounding = 1e-12 * expected.max()
+    assert np.count_nonzero(expected > rounding) == 9
     np.testing.assert_array_equal(gradient(indicator("45q15"), run(gap, settings)), expected)
     found = gradient(indicator("45q15"), run(short, settings))
-    np.testing.assert_array_equal(found > 0, expected[: len(short.grid)] > 0)
+    np.testing.assert_array_equal(found > rounding, expected[: len(short.grid)] > rounding)
 
 
 @pytest.mark.fast

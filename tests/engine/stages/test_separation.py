@@ -7,7 +7,6 @@ from engine.ages import AgeGrid
 from engine.chain import Chain, run
 from engine.panel import Panel
 from engine.settings import find
-from engine.stages.separation import _constant_rate
 from tests.factories import gompertz_panel
 
 
@@ -65,12 +64,3 @@ def test_a_law_runs_in_single_years_of_constant_rate_to_130() -> None:
     np.testing.assert_allclose(table.qx[-31:-1], -np.expm1(-table.mx[-31:-1]), rtol=1e-12)
     assert table.ex[-1] == 1 / table.mx[-1]
     np.testing.assert_allclose(np.diff(np.log(table.mx[-31:])), np.log(table.mx[-1] / table.mx[-2]))
-
-
-@pytest.mark.fast
-def test_constant_rate_by_series_and_by_formula_meet() -> None:
-    n = np.array([1.0, 1.0, 5.0, 5.0])
-    m = np.array([0.1 - 1e-12, 0.1 + 1e-12, 0.02 - 1e-13, 0.02 + 1e-13])
-    share, slope = _constant_rate(n, m)
-    np.testing.assert_allclose(share[::2], share[1::2], rtol=1e-11)
-    np.testing.assert_allclose(slope[::2], slope[1::2], rtol=1e-10)
