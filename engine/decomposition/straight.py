@@ -9,12 +9,13 @@ from engine.ages import Array
 from engine.chain import Chain, Reading, gradient, run
 from engine.panel import BESIDE, COUNTED, Panel
 from engine.settings import Settings
+from engine.stages.inside import bounds
 from engine.stages.separation import CHILD, FIRST_YEAR, has_child_group, has_first_year
 from engine.tables import Partials
 
 NODES, WEIGHTS = np.polynomial.legendre.leggauss(8)
 BESIDE_JUMP = 1e-13  # relative distance at which the two sides of a jump are read
-DOUBLINGS = 8  # cuts as the open group's rate doubles: 1 / m bends too sharply for eight nodes
+DOUBLINGS = 8  # cuts as a rate doubles: 1 / m of the open group bends too sharply for eight nodes
 
 
 def require_one_grid(this: Panel, that: Panel) -> None:
@@ -98,11 +99,11 @@ class Line:
                 found += self._infant_rate_passes(level, sex)
         still = np.zeros(np.broadcast_shapes(self.step.shape[:-1], *(at.shape for at, _ in found)))
         with np.errstate(all="ignore"):
-            bound = (2 / grid.widths[:-1] - self.from_mx[..., :-1]) / self.step[..., :-1]
-            last = self.from_mx[..., -1], self.step[..., -1]
-            least = np.minimum(last[0], last[0] + last[1])
-            found += [((least * 2**k - last[0]) / last[1], still) for k in range(1, DOUBLINGS + 1)]
-        found += [(bound[..., x], still) for x in range(len(grid) - 1)]
+            bound = bounds(grid, settings.inside) - self.from_mx[..., :-1]
+            found += [(t, still) for t in np.moveaxis(bound / self.step[..., :-1], -1, 0)]
+            found += [(t, still) for t in self._open_rate_doubles()]
+            if settings.inside == "keyfitz":
+                found += [(t, still) for t in self._neighbours_bend()]
         at = np.stack([np.broadcast_to(at, still.shape) for at, _ in found])
         toward = np.stack([np.broadcast_to(sign, still.shape) for _, sign in found])
         at = np.where((at > 0) & (at < 1), at, 1.0)
@@ -110,6 +111,23 @@ class Line:
         at, toward = (np.take_along_axis(part, order, axis=0) for part in (at, toward))
         some = (at < 1).reshape(len(at), -1).any(axis=1)
         return _Cuts(at[some], toward[some])
+
+    def _open_rate_doubles(self) -> list[Array]:
+        """Where the open group's rate is twice, four times ... its least on the line."""
+        first, step = self.from_mx[..., -1], self.step[..., -1]
+        least = np.minimum(first, first + step)
+        return [(least * 2**k - first) / step for k in range(1, DOUBLINGS + 1)]
+
+    def _neighbours_bend(self) -> list[Array]:
+        """Where ax, read off the neighbours' deaths over the group's own, bends sharply: near 1 / m
+        and ever closer to an end at which a rate is 0 that is not 0 at the other."""
+        full = 2 / self.start.panel.grid.widths[:-1]
+        found = list(np.moveaxis((full - self.from_mx[..., :-1]) / self.step[..., :-1], -1, 0))
+        fills = ((self.from_mx == 0) & (self.to_mx > 0)).any(axis=-1)
+        empties = ((self.to_mx == 0) & (self.from_mx > 0)).any(axis=-1)
+        for t in (0.5**k for k in range(1, DOUBLINGS + 1)):
+            found += [np.where(fills, t, 1.0), np.where(empties, 1 - t, 1.0)]
+        return found
 
     def _infant_rate_passes(self, level: float, sex: int) -> list[tuple[Array, Array]]:
         """Both times at which ratio * m0 of a sex is at a level, and in which direction it passes;

@@ -8,6 +8,7 @@ from engine.chain import Reading, Tally, run
 from engine.decomposition import contributions, contributions_by_cause
 from engine.indicators import INDICATORS
 from engine.panel import Panel
+from engine.settings import SETTINGS, Settings
 from tests.engine.decomposition.pairs import ONE_SEX, PAIRS, PLAIN, Pair, scale
 from tests.factories import GRIDS, gompertz_panel
 
@@ -32,6 +33,20 @@ def test_nothing_remains_between_populations_of_one_sex(name: str, indicator: Re
         return
     assert abs(found.remainder) <= 1e-9 * scale(found.by_age, found.difference) + 1e-17
     assert found.by_age.sum() + found.remainder == pytest.approx(found.difference, rel=1e-12)
+
+
+UNSMOOTHED = {key: one for key, one in SETTINGS.items() if one.smoothing == "none"}
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize("settings", UNSMOOTHED.values(), ids=UNSMOOTHED)
+@pytest.mark.parametrize("name", [name for name in ONE_SEX if name != "far apart"])
+def test_nothing_remains_under_any_chain(name: str, settings: Settings) -> None:
+    """Of a curve whose smoothness the counts choose, what that choice moves is no age's."""
+    pair = ONE_SEX[name].same_years(settings)
+    for key in ("e0", "H"):
+        found = contributions(INDICATORS[key], pair.this, pair.that, settings)
+        assert abs(found.remainder) <= 1e-9 * scale(found.by_age, found.difference)
 
 
 @pytest.mark.fast
