@@ -46,13 +46,14 @@ def solve(bands: Array, right: Array) -> Array:
     upper, half, size = _eliminated(bands), len(bands), bands.shape[1]
     upper[1:] /= upper[0]
     value: Array = right.astype(np.result_type(bands, right))
-    for k in range(size):
-        for d in range(1, min(half, size - k)):
-            value[k + d] -= upper[d, k] * value[k]
+    for k in range(size - 1):
+        reach = min(half, size - k)
+        value[k + 1 : k + reach] -= upper[1:reach, k] * value[k]
     value = value / upper[0]
-    for k in reversed(range(size)):
-        for d in range(1, min(half, size - k)):
-            value[k] -= upper[d, k] * value[k + d]
+    for k in reversed(range(size - 1)):
+        reach = min(half, size - k)
+        if reach > 1:
+            value[k] -= total(upper[1:reach, k] * value[k + 1 : k + reach])
     return value
 
 
@@ -69,11 +70,11 @@ def inverse(bands: Array) -> Array:
     found = np.zeros_like(upper)
     for k in reversed(range(size)):
         reach = min(half, size - k)
+        right = np.arange(1, reach)
         for d in reversed(range(reach)):
-            value = 1 / upper[0, k] if d == 0 else np.zeros_like(upper[0, k])
-            for j in range(1, reach):
-                value = value - upper[j, k] * found[abs(d - j), k + min(d, j)]
-            found[d, k] = value
+            beside = found[np.abs(d - right), k + np.minimum(d, right)]
+            found[d, k] = -total(upper[right, k] * beside) if reach > 1 else 0.0
+        found[0, k] += 1 / upper[0, k]
     return found
 
 
