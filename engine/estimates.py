@@ -33,6 +33,7 @@ class Reason(IntEnum):
     NO_STANDARD = 17  # the population that weights the ages is not held
     TOO_FEW_DEATHS = 18  # fewer than the number needs
     NOT_DECOMPOSED = 19  # no exact share of the difference belongs to an age
+    OPEN_AGE_TOO_LOW = 20  # the open group begins too low to be closed by its own death rate
 
 
 @dataclass(frozen=True, slots=True)

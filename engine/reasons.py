@@ -38,7 +38,14 @@ def judge(needs: Needs, chain: Chain, value: Array) -> NDArray[np.uint8]:
             ),
             (
                 Reason.NO_DEATHS_IN_OPEN_GROUP,
-                needs.open_deaths & (np.real(rates.mx[..., -1]) == 0) & (not chain.modelled),
+                needs.open_deaths
+                & (np.real(rates.mx[..., -1]) == 0)
+                & ~chain.borrowed
+                & (not chain.modelled),
+            ),
+            (
+                Reason.OPEN_AGE_TOO_LOW,
+                np.full(shape, needs.open_deaths and chain.open_too_low),
             ),
             (Reason.NO_DEATHS, needs.span_deaths & (deaths[..., span].sum(axis=-1) == 0)),
             (needs.otherwise, ~np.isfinite(value)),

@@ -48,5 +48,10 @@ def reason(code: int, settings: Settings) -> str:
         Reason.NO_LAW: _(
             "No law that rises with age fits the death rates from {age} on.", age=settings.fit_from
         ),
+        Reason.OPEN_AGE_TOO_LOW: _(
+            "The last, open age group begins below {age}: closed by its own death rate, it could"
+            " make life expectancy more than a year too long.",
+            age=settings.least_open_age,
+        ),
     }
     return sentences[Reason(code)]
