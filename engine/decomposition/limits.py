@@ -21,7 +21,7 @@ from engine.streams import PairDraws, pair_draws
 NODES, WEIGHTS = np.polynomial.legendre.leggauss(2)
 NUDGE = 1e-6  # relative; one rate's step where the bend of the gradient is read
 STILL = 1e-3  # relative change below which a rate's own bend is read, not told from its ends
-ROUNDING = 1e-9  # of the widest: what is left of a limit at an age that the number does not read
+ROUNDING = 1e-7  # of the widest: what is left of a limit at an age that the number does not read
 LOST = 0.01  # share of the draws that may lack a figure
 
 Codes = NDArray[np.str_]

@@ -1,0 +1,250 @@
+"""Limits of contributions: against other ways to the same, and how often they hold the truth."""
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+from numpy.typing import NDArray
+from scipy.special import ndtri
+from scipy.stats import bootstrap, norm
+
+from engine.ages import AgeGrid, Array
+from engine.decomposition import contribution_limits, contributions, stepwise
+from engine.decomposition.limits import corrected
+from engine.indicators import INDICATORS, difference
+from engine.panel import Panel
+from engine.settings import find
+from tests.engine.decomposition.pairs import PAIRS, PLAIN, Pair
+from tests.factories import GRIDS, codes, gompertz_panel
+
+
+def both(panel: Panel) -> tuple[NDArray[np.str_], NDArray[np.str_]]:
+    """Codes of the two sides of a comparison."""
+    return codes(panel, "this"), codes(panel, "that")
+
+
+def copies(panel: Panel, times: int) -> Panel:
+    return panel.over(lambda array: np.broadcast_to(array, (times, array.shape[-1])))
+
+
+def standard_errors(key: str, pair: Pair, settings) -> Array:
+    """By brute force: every count of each side moved a little up and down, one by one."""
+    ages = len(pair.this.grid)
+    variance = np.zeros(ages)
+    for side in (0, 1):
+        sides = [copies(panel, ages) for panel in (pair.this, pair.that)]
+        counted = sides[side].deaths
+        aside = 1e-4 * counted * np.eye(ages)
+        moved = []
+        for sign in (1, -1):
+            sides[side] = replace(sides[side], deaths=counted + sign * aside)
+            moved.append(contributions(INDICATORS[key], *sides, settings).by_age)
+        step = 2 * np.diag(aside)[:, None]
+        slope = np.where(step > 0, (moved[0] - moved[1]) / np.where(step > 0, step, 1), 0)
+        variance += (slope**2 * counted[0][:, None]).sum(axis=0)
+    return np.sqrt(variance)
+
+
+def widths(limits) -> Array:
+    return (limits.high - limits.low) / (2 * ndtri(0.975))
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize("key", ["e0", "H", "edagger", "ageing_rate"])
+@pytest.mark.parametrize("name", [name for name in PAIRS if name != "far apart"])
+def test_the_standard_error_is_that_of_every_count_moved_by_itself(name: str, key: str) -> None:
+    pair = PAIRS[name]
+    found = widths(contribution_limits(INDICATORS[key], pair.this, pair.that, PLAIN))
+    expected = standard_errors(key, pair, PLAIN)
+    read = expected > 1e-6 * expected.max()
+    np.testing.assert_allclose(found[read], expected[read], rtol=0.005)
+    assert np.isnan(found[~read]).all()
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize(
+    "settings", ["almanac-1-gompertz", "almanac-1-keyfitz", "almanac-1-constant-rate"]
+)
+def test_the_standard_error_under_other_chains(settings: str) -> None:
+    pair, chain = PAIRS["Danish men 1974 to 2012"], find(settings)
+    for key in ("e0", "H"):
+        found = widths(contribution_limits(INDICATORS[key], pair.this, pair.that, chain))
+        expected = standard_errors(key, pair, chain)
+        read = expected > 1e-6 * expected.max()
+        np.testing.assert_allclose(found[read], expected[read], rtol=0.02)
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize("key", ["e0", "H", "45q15"])
+def test_limits_of_all_ages_together_are_those_of_the_difference(key: str) -> None:
+    pair = PAIRS["Danish men 1974 to 2012"]
+    one = AgeGrid((0,))
+    found = contribution_limits(INDICATORS[key], pair.this, pair.that, PLAIN, groups=one)
+    expected = difference(INDICATORS[key], pair.this, pair.that, PLAIN)
+    assert found.low.shape == (1,)
+    np.testing.assert_allclose(found.low[0], expected.low, rtol=1e-3)
+    np.testing.assert_allclose(found.high[0], expected.high, rtol=1e-3)
+
+
+@pytest.mark.fast
+def test_limits_count_shared_deaths_once() -> None:
+    """Against a whole it is part of; taken as independent, the interval would be too wide."""
+    part = gompertz_panel(seed=11, people=3e6, level=2e-5, slope=0.095)
+    rest = gompertz_panel(seed=12, people=1e6, level=4e-5, slope=0.095)
+    whole = replace(part, deaths=part.deaths + rest.deaths, exposure=part.exposure + rest.exposure)
+    one = AgeGrid((0,))
+
+    def width(shared: Array | None) -> float:
+        return float(
+            widths(
+                contribution_limits(INDICATORS["e0"], part, whole, PLAIN, shared=shared, groups=one)
+            )[0]
+        )
+
+    expected = difference(INDICATORS["e0"], part, whole, PLAIN, shared=part)
+    assert width(part.deaths) == pytest.approx(float(widths(expected)), rel=1e-3)
+    assert width(None) > 1.5 * width(part.deaths)
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize("grid", GRIDS)
+def test_limits_of_groups_are_those_of_their_sums(grid: str) -> None:
+    """By brute force: the sums of simulated contributions, many times drawn."""
+    this, that = (
+        gompertz_panel(GRIDS[grid], seed=seed, people=3e7, level=level)
+        for seed, level in ((5, 2e-5), (6, 3e-5))
+    )
+    groups = AgeGrid((0, 40, 60, 80))
+    found = widths(contribution_limits(INDICATORS["H"], this, that, PLAIN, groups=groups))
+    rng = np.random.default_rng(7)
+    drawn = [
+        replace(copies(side, 1000), deaths=rng.poisson(side.deaths, (1000, len(side.grid))) * 1.0)
+        for side in (this, that)
+    ]
+    sums = this.grid.regroup(contributions(INDICATORS["H"], *drawn, PLAIN).by_age, groups)
+    np.testing.assert_allclose(found, sums.std(axis=0), rtol=0.08)
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize("key", ["e0", "H"])
+def test_limits_hold_the_truth_as_often_as_they_say(key: str) -> None:
+    """Contributions between two known laws, at ages with at least 30 deaths on either side."""
+    this = gompertz_panel(level=2e-5, infant=0.004, people=2e5)
+    that = gompertz_panel(level=3.2e-5, slope=0.097, infant=0.012, people=2e5)
+    truth = contributions(INDICATORS[key], this, that, PLAIN).by_age
+    rng, times = np.random.default_rng(3), 600
+    drawn = [
+        replace(copies(side, times), deaths=rng.poisson(side.deaths, (times, 22)) * 1.0)
+        for side in (this, that)
+    ]
+    limits = contribution_limits(INDICATORS[key], *drawn, PLAIN)
+    held = ((limits.low <= truth) & (truth <= limits.high)).mean(axis=0)
+    enough = np.minimum(this.deaths, that.deaths) >= 30
+    assert enough.sum() >= 10
+    assert 0.935 < held[enough].mean() < 0.965
+    assert held[enough].min() > 0.92
+    below, above = (truth < limits.low).mean(axis=0), (truth > limits.high).mean(axis=0)
+    assert abs(below[enough].mean() - above[enough].mean()) < 0.015
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize("key", ["H", "median"])
+def test_limits_do_not_depend_on_what_else_is_drawn(key: str) -> None:
+    this = gompertz_panel(seed=7, level=np.array([2e-5, 3e-5, 4e-5]))
+    that = gompertz_panel(seed=8, level=np.array([3e-5, 3e-5, 3e-5]))
+    names = both(this)
+    low, high = contribution_limits(INDICATORS[key], this, that, PLAIN, streams=names, draws=50)
+    for row in range(3):
+        alone = contribution_limits(
+            INDICATORS[key],
+            this[row],
+            that[row],
+            PLAIN,
+            streams=(names[0][row], names[1][row]),
+            draws=50,
+        )
+        np.testing.assert_array_equal(alone.low, low[row])
+        np.testing.assert_array_equal(alone.high, high[row])
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize("pair", PAIRS.values(), ids=PAIRS)
+def test_no_limits_at_ages_that_a_number_does_not_read(pair: Pair) -> None:
+    """The chance of dying between 15 and 60 reads nine age groups."""
+    low, high = contribution_limits(INDICATORS["45q15"], pair.this, pair.that, PLAIN)
+    starts = np.array(pair.this.grid.starts)
+    read = (starts >= 15) & (starts < 60)
+    np.testing.assert_array_equal(np.isfinite(low), read)
+    np.testing.assert_array_equal(np.isfinite(high), read)
+
+
+@pytest.mark.fast
+def test_no_limits_where_nobody_died_or_there_is_no_figure() -> None:
+    this, that = gompertz_panel(), gompertz_panel(level=4e-5)
+    for panel in (this, that):
+        panel.deaths[3] = 0
+    low, _ = contribution_limits(INDICATORS["e0"], this, that, PLAIN)
+    np.testing.assert_array_equal(np.isnan(low), np.arange(22) == 3)
+    this.deaths[-1] = 0
+    assert np.isnan(contribution_limits(INDICATORS["e0"], this, that, PLAIN).low).all()
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize("key", ["median", "mode"])
+def test_stepwise_contributions_have_simulated_limits(key: str) -> None:
+    """They hold the contributions; those of all ages together are the simulated limits of the
+    difference, with choices made on the observed counts, such as of a smoothing, kept."""
+    pair = Pair(*(gompertz_panel(people=4e6, level=level) for level in (2e-5, 3e-5)))
+    indicator = INDICATORS[key]
+    names, groups = both(pair.this), AgeGrid((0, 60, 80))
+    value = pair.this.grid.regroup(stepwise(indicator, pair.this, pair.that, PLAIN).by_age, groups)
+    found = contribution_limits(
+        indicator, pair.this, pair.that, PLAIN, streams=names, draws=100, groups=groups
+    )
+    assert ((found.low < value) & (value < found.high)).all()
+    whole = contribution_limits(
+        indicator, pair.this, pair.that, PLAIN, streams=names, draws=200, groups=AgeGrid((0,))
+    )
+    expected = difference(indicator, pair.this, pair.that, PLAIN, streams=names)
+    np.testing.assert_allclose(widths(whole)[0], widths(expected), rtol=0.2)
+
+
+@pytest.mark.fast
+def test_what_is_simulated_needs_streams() -> None:
+    panel = gompertz_panel()
+    with pytest.raises(ValueError, match="are simulated, and no streams were given"):
+        contribution_limits(INDICATORS["median"], panel, panel, PLAIN)
+
+
+@pytest.mark.fast
+def test_corrected_limits_are_those_of_another_program() -> None:
+    """scipy's bias-corrected and accelerated bootstrap of a mean differs by its acceleration, which
+    is 0 for symmetric samples."""
+    sample = np.concatenate([np.arange(1.0, 40), -np.arange(1.0, 40)]) ** 3 + 10
+    theirs = bootstrap((sample,), np.mean, n_resamples=4999, method="BCa", rng=4)
+    draws = theirs.bootstrap_distribution
+    ours = corrected(draws, np.array(sample.mean()), 0.95)
+    np.testing.assert_allclose(ours, theirs.confidence_interval, rtol=0.02, atol=0.01 * draws.std())
+
+
+@pytest.mark.fast
+def test_bias_of_the_draws_is_taken_off_twice() -> None:
+    """Draws centred half a standard deviation above the value: z0 = -0.5, and the limits are the
+    quantiles Phi(2 z0 -+ 1.96), which lie as far below the value as the draws lie above it."""
+    draws = norm.ppf(np.arange(1, 20_000) / 20_000)[:, None] + 0.5
+    low, high = corrected(draws, np.zeros(1), 0.95)
+    np.testing.assert_allclose([low[0], high[0]], [-0.5 - 1.96, -0.5 + 1.96], atol=0.01)
+    plain = corrected(draws - 0.5, np.zeros(1), 0.95)
+    np.testing.assert_allclose([plain.low[0], plain.high[0]], [-1.96, 1.96], atol=0.01)
+
+
+@pytest.mark.fast
+def test_corrected_limits_are_missing_where_too_many_draws_are() -> None:
+    draws = np.random.default_rng(1).normal(size=(200, 4))
+    draws[:2, 1] = np.nan  # 1 %
+    draws[:3, 2] = np.nan
+    draws[:, 3] = 0.0
+    low, high = corrected(draws, np.zeros(4), 0.95)
+    np.testing.assert_array_equal(np.isnan(low), [False, False, True, True])
+    np.testing.assert_array_equal(np.isnan(high), np.isnan(low))
+    assert np.isnan(corrected(draws, np.full(4, np.nan), 0.95).low).all()
