@@ -25,7 +25,7 @@ GRIDS = {
     "abridged": AgeGrid((0, 1, *range(5, 101, 5))),
     "single": AgeGrid(tuple(range(101))),
     "irregular": AgeGrid(
-        (0, 1, 3, 5, 12, 15, 25, 40, 45, 50, 60, 65, 70, 74, 80, 83, 85, 90, 95, 100)
+        (0, 1, 3, 5, 10, 12, 15, 25, 30, 40, 45, 50, 60, 65, 70, 74, 80, 83, 85, 90, 95, 100)
     ),
 }
 
@@ -131,6 +131,10 @@ def edition(
         status = "provisional" if period in provisional else "final"
         for measure, counts in (("deaths", panel.deaths), ("person_years", panel.exposure)):
             cells[Key(area, sex, period, measure)] = Vector(status, panel.grid, counts)
+        for measure, count in zip(records.MEASURES[2:], panel.births, strict=True):
+            if np.isfinite(count):
+                all_ages = Vector(status, AgeGrid((0,)), np.array([count]))
+                cells[Key(area, sex, period, measure)] = all_ages
     named = {key.area for key in cells} | {*parents, *parents.values()}
     stood = areas.listing(session, code, base) if base else ()
     listed = totals.merged(

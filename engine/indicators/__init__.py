@@ -1,16 +1,28 @@
 """The registry: every number that Ebbline reads off a life table or off death rates.
 
-Pages, twins, the command line and the methods page read it; a new indicator is one new entry.
+Pages, twins, the command line and the methods page read it. A new indicator is one entry in a
+family, and its key in the group where a reader looks for it.
 """
 
-import re
+from dataclasses import dataclass
 
 from engine.indicator import Indicator, Needs, Unit
-from engine.indicators import ageing, expectancy, modes, probabilities, spread
+from engine.indicators import (
+    ageing,
+    deviation,
+    expectancy,
+    inequality,
+    losses,
+    modes,
+    probabilities,
+    quantiles,
+)
 from engine.uncertainty import difference, differences, estimate, estimates
 
 __all__ = [
+    "GROUPS",
     "INDICATORS",
+    "Group",
     "Indicator",
     "Needs",
     "Unit",
@@ -21,42 +33,76 @@ __all__ = [
     "find",
 ]
 
-_ENTRIES = {
-    indicator.key: indicator
-    for module in (expectancy, spread, modes, probabilities, ageing)
-    for indicator in module.FAMILY
-}
-_ORDER = (
-    "e0",
-    "e65",
-    "median",
-    "mode",
-    "mode_raw",
-    "mode_parabola",
-    "edagger",
-    "H",
-    "45q15",
-    "5q0",
-    "ageing_rate",
+FAMILIES = (
+    expectancy,
+    probabilities,
+    quantiles,
+    modes,
+    losses,
+    deviation,
+    inequality,
+    ageing,
 )
-INDICATORS: dict[str, Indicator] = {
-    key: _ENTRIES[key] for key in (*_ORDER, *(k for k in _ENTRIES if k not in _ORDER))
-}
+PATTERNS = (*expectancy.PATTERNS, *probabilities.PATTERNS)
+_ENTRIES = {one.key: one for family in FAMILIES for one in family.FAMILY}
+
+
+@dataclass(frozen=True, slots=True)
+class Group:
+    """Indicators that answer one question, in the order in which a reader can take them in."""
+
+    key: str
+    label: str
+    question: str
+    indicators: tuple[Indicator, ...]
+
+
+def _group(key: str, label: str, question: str, keys: str) -> Group:
+    return Group(key, label, question, tuple(_ENTRIES[one] for one in keys.split()))
+
+
+GROUPS = (
+    _group(
+        "level",
+        "Length of life",
+        "How long do people live?",
+        "e0 e65 e15_65 l65 median lower_quartile upper_quartile mode mode_raw mode_parabola"
+        " 45q15 40q30",
+    ),
+    _group(
+        "spread",
+        "Spread",
+        "How many years lie between one death and another?",
+        "edagger edagger_early edagger_late sd0 sd10 iqr shortest_half aid",
+    ),
+    _group(
+        "shape",
+        "Shape",
+        "How even is length of life, whatever its average?",
+        "H gini cv theil mld threshold_edagger threshold_H ageing_rate",
+    ),
+    _group("rates", "Death rates", "How many people die, for the people there are?", ""),
+    _group("young", "Young lives", "How many children die?", "5q0"),
+)
+INDICATORS: dict[str, Indicator] = {one.key: one for group in GROUPS for one in group.indicators}
 
 
 def find(key: str) -> Indicator:
-    """The entry of this key; e and any age up to 120 is one, whether listed or not.
+    """The entry of this key; one that names ages is made for them, whether listed or not.
 
-    Raises: ValueError that lists the keys.
+    Raises: ValueError that lists the keys and the kinds of key that name ages, or says what is
+            wrong with the ages.
     >>> find("e80").label
     'Life expectancy at 80'
+    >>> find("20q40").label
+    'Chance of dying between 40 and 60'
     """
     if key in INDICATORS:
         return INDICATORS[key]
-    named = re.fullmatch(r"e([1-9][0-9]{0,2})", key)
-    if named and int(named[1]) <= expectancy.OLDEST:
-        return expectancy.at_age(int(named[1]))
+    for pattern in PATTERNS:
+        if made := pattern.find(key):
+            return made
     raise ValueError(
-        f"no indicator is named {key!r}; the names are {', '.join(INDICATORS)}, "
-        f"and e followed by an age up to {expectancy.OLDEST}, such as e80"
+        f"no indicator is named {key!r}; the names are {', '.join(INDICATORS)}, and with other ages"
+        f" {', '.join(pattern.example for pattern in PATTERNS)}"
     )

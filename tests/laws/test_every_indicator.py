@@ -21,7 +21,7 @@ CHAINS = {key: replace(settings, draws=20) for key, settings in SETTINGS.items()
 every_indicator = pytest.mark.parametrize("indicator", INDICATORS.values(), ids=lambda i: i.key)
 smooth = pytest.mark.parametrize(
     "indicator",
-    [i for i in (*INDICATORS.values(), find("e80"), find("e1")) if i.smooth],
+    [i for i in (*INDICATORS.values(), find("e80"), find("e1"), find("e0_45")) if i.smooth],
     ids=lambda i: i.key,
 )
 every_chain = pytest.mark.parametrize("settings", CHAINS.values(), ids=lambda s: s.key)
@@ -197,7 +197,7 @@ def test_a_difference_turned_round_changes_its_sign(
 ) -> None:
     this, that = some(), some()[::-1]
     streams = codes(this, "this"), codes(that, "that")
-    shared = np.floor(np.minimum(this.deaths, that.deaths) / 3)
+    shared = replace(this, deaths=np.floor(np.minimum(this.deaths, that.deaths) / 3))
     one = difference(indicator, this, that, settings, shared=shared, streams=streams)
     two = difference(indicator, that, this, settings, shared=shared, streams=streams[::-1])
     assert_array_equal(one.value, -two.value)
@@ -220,7 +220,7 @@ def test_deaths_counted_in_both_narrow_the_interval(
     whole = replace(part, deaths=part.deaths + rest.deaths, exposure=part.exposure + rest.exposure)
     streams = codes(part, "part"), codes(part, "whole")
     naive = difference(indicator, part, whole, settings, streams=streams)
-    right = difference(indicator, part, whole, settings, shared=part.deaths, streams=streams)
+    right = difference(indicator, part, whole, settings, shared=part, streams=streams)
     assert_array_equal(naive.value, right.value)
     assert np.all(right.reason == Reason.NONE)
     narrower = (right.high - right.low).sum() / (naive.high - naive.low).sum()
