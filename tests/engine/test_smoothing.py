@@ -3,8 +3,10 @@
 import numpy as np
 import pytest
 from scipy.interpolate import BSpline
+from scipy.stats import poisson
 
-from engine.smoothing import PENALTIES, Basis, Curve, fit
+from engine.smoothing import PENALTIES, Basis, Curve, fit, fit_each, posterior_curves
+from tests.engine.stepping import complex_step, largest_error
 from tests.factories import GRIDS, gompertz_panel
 
 GRID = GRIDS["abridged"]
@@ -117,3 +119,92 @@ def test_a_wide_last_group_leaves_the_last_spline_to_the_penalty() -> None:
     curve = fit(BASIS, ages, deaths, years)
     np.testing.assert_allclose(curve.log_rates(ages), np.log(3e-5) + 0.1 * ages, atol=1e-6)
     assert curve.log_rates(np.array([100.0])) == pytest.approx(np.log(3e-5) + 10, abs=1e-4)
+
+
+def information(deaths: np.ndarray, years: np.ndarray, weight: float) -> np.ndarray:
+    b = dense_basis(AGES)
+    fitted = years * np.exp(b @ dense_fit(deaths, years, weight)[0])
+    d2 = np.diff(np.eye(b.shape[1]), 2, axis=0)
+    return b.T @ (fitted[:, None] * b) + weight * d2.T @ d2
+
+
+def test_errors_dimension_and_evidence_are_those_of_dense_algebra() -> None:
+    deaths, years = counts(people=80_000)
+    fine = np.linspace(11, 99, 30)
+    tried = fit_each(BASIS, AGES, deaths, years)
+    assert tried.penalty.tolist() == PENALTIES.tolist()
+    for i, weight in enumerate(PENALTIES):
+        full = information(deaths, years, weight)
+        d2 = np.diff(np.eye(BASIS.size), 2, axis=0)
+        data = full - weight * d2.T @ d2
+        assert tried.dimension[i] == pytest.approx(np.trace(np.linalg.solve(full, data)), rel=1e-7)
+        spread = dense_basis(fine) @ np.linalg.inv(full) @ dense_basis(fine).T
+        np.testing.assert_allclose(
+            tried.standard_errors(fine)[i], np.sqrt(np.diag(spread)), rtol=1e-6
+        )
+        found, bic = dense_fit(deaths, years, weight)
+        assert tried.bic[i] == pytest.approx(bic, rel=1e-8)
+        mu = years * np.exp(dense_basis(AGES) @ found)
+        likelihood = poisson.logpmf(deaths, mu).sum() - poisson.logpmf(deaths, deaths).sum()
+        prior = (BASIS.size - 2) / 2 * np.log(weight) - weight / 2 * ((d2 @ found) ** 2).sum()
+        laplace = likelihood + prior - np.linalg.slogdet(full)[1] / 2
+        assert tried.evidence[i] == pytest.approx(-2 * laplace, rel=1e-8)
+
+
+@pytest.mark.parametrize("weight", [1.0, 1000.0])
+def test_the_pullback_is_the_complex_step(weight: float) -> None:
+    panel = gompertz_panel(GRID, seed=4, slope=np.array([0.09, 0.11]), people=50_000)
+    deaths, years = panel.deaths[:, INSIDE], panel.exposure[:, INSIDE]
+    start = Curve(BASIS, np.full(BASIS.size, -3.0), np.array(weight))
+    at = np.array([10.0, 33.3, 70.0, 99.9])
+    g = np.random.default_rng(1).standard_normal((2, 4))
+
+    def value(mx: np.ndarray) -> np.ndarray:
+        return (fit(BASIS, AGES, mx * years, years, start=start).log_rates(at) * g).sum(axis=-1)
+
+    pulled = fit(BASIS, AGES, deaths, years, start=start).pull(at, g)
+    assert largest_error(pulled, complex_step(value, deaths / years)) < 1e-10
+
+
+def test_complex_counts_keep_the_penalty_of_their_real_part() -> None:
+    deaths, years = counts()
+    real, beside = (fit(BASIS, AGES, part, years) for part in (deaths, deaths * (1 + 1e-30j)))
+    assert beside.penalty == real.penalty
+    np.testing.assert_allclose(beside.coefficients.real, real.coefficients, atol=1e-12)
+    fitted = years * np.exp(beside.log_rates(AGES))
+    assert fitted.imag.sum() == pytest.approx(1e-30 * deaths.sum(), rel=1e-9)
+
+
+def test_posterior_curves_spread_by_the_inverse_information() -> None:
+    deaths, years = counts(people=100_000)
+    rng, draws = np.random.default_rng(6), 40_000
+    tried = fit_each(BASIS, AGES, deaths, years)
+    drawn = rng.poisson(deaths, (draws, len(deaths))).astype(float)
+    curves = posterior_curves(tried, drawn, rng.standard_normal((draws, BASIS.size - 1)))
+    likely = np.exp((tried.evidence.min() - tried.evidence) / 2)
+    likely /= likely.sum()
+    shares = np.array([(curves.penalty == weight).mean() for weight in PENALTIES])
+    np.testing.assert_allclose(shares, likely, atol=0.01)
+    for i in np.flatnonzero(likely > 0.1):
+        of = curves.coefficients[curves.penalty == PENALTIES[i]]
+        np.testing.assert_allclose(of.mean(axis=0), tried.coefficients[i], atol=0.05)
+        full = information(deaths, years, PENALTIES[i])
+        fitted = full - PENALTIES[i] * (d2 := np.diff(np.eye(BASIS.size), 2, axis=0)).T @ d2
+        b, inverse = dense_basis(AGES), np.linalg.inv(full)
+        by_chance = b.T @ (deaths[:, None] * b) - fitted  # around the counts, not those fitted
+        spread = np.diag(inverse + inverse @ by_chance @ inverse)
+        np.testing.assert_allclose(of.var(axis=0), spread, rtol=0.08)
+
+
+def test_curves_of_shared_deaths_move_together() -> None:
+    deaths, years = counts(people=5e6)
+    rng = np.random.default_rng(6)
+    tried = fit_each(BASIS, AGES, deaths, years)
+    drawn = rng.poisson(deaths, (4000, len(deaths))).astype(float)
+    one, other = (
+        posterior_curves(tried, drawn, rng.standard_normal((4000, BASIS.size - 1))).log_rates(
+            np.array([80.0])
+        )
+        for _ in range(2)
+    )
+    assert np.corrcoef(one[:, 0], other[:, 0])[0, 1] > 0.5
