@@ -63,6 +63,15 @@ class AgeGrid:
         return (*closed, f"{self.starts[-1]}+")
 
     @property
+    def label(self) -> str:
+        """The grid in words.
+
+        >>> AgeGrid((0, 1, 5, 10)).label
+        '4 groups, open at 10'
+        """
+        return f"{len(self)} groups, open at {self.open_age}"
+
+    @property
     def open_age(self) -> int:
         return self.starts[-1]
 

@@ -1,5 +1,7 @@
 """Panels: persons from the sexes, parts of a batch, what is refused."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
@@ -46,6 +48,72 @@ def test_regrouping_keeps_the_infants_mix_and_the_counts() -> None:
     assert coarse.infant_weight is panel.infant_weight
     with pytest.raises(ValueError, match="no age group starts at 3"):
         gompertz_panel().regroup(AgeGrid((0, 3)))
+
+
+def years(sex_: str) -> list[Panel]:
+    """Three years that differ, the second on a coarser grid."""
+    made = [
+        gompertz_panel(seed=number, sex=sex_, people=people, infant=infant)
+        for number, (people, infant) in enumerate([(2e5, 0.004), (6e5, 0.006), (3e5, 0.01)])
+    ]
+    made[1] = made[1].regroup(AgeGrid((0, 1, *range(5, 91, 5))))
+    return made
+
+
+def test_pooled_rates_are_weighted_by_person_years_on_the_ages_all_have() -> None:
+    parts = years("f")
+    pooled = Panel.pooled(parts)
+    assert pooled.grid.open_age == 90
+    parts = [part.regroup(pooled.grid) for part in parts]
+    np.testing.assert_array_equal(pooled.deaths, sum(part.deaths for part in parts))
+    rates = [part.deaths / part.exposure for part in parts]
+    weights = [part.exposure / pooled.exposure for part in parts]
+    np.testing.assert_allclose(
+        pooled.deaths / pooled.exposure,
+        sum(rate * weight for rate, weight in zip(rates, weights, strict=True)),
+        rtol=1e-12,
+    )
+    np.testing.assert_allclose(pooled.infant_weight, [1, 0])
+    np.testing.assert_allclose(pooled.infant_ratio, [1, 1])
+
+
+def test_pooling_in_steps_or_in_another_order_is_the_same_sum() -> None:
+    first, second, third = years("m")
+    together = Panel.pooled([first, second, third])
+    steps = Panel.pooled([third, Panel.pooled([second, first])])
+    assert steps.grid == together.grid
+    np.testing.assert_array_equal(steps.deaths, together.deaths)
+    np.testing.assert_allclose(steps.exposure, together.exposure, rtol=1e-14)
+
+
+def test_persons_of_several_years_are_pooled_sex_by_sex() -> None:
+    """Then their infants' mix is that of all years; pooled as persons it is a mean of the years'
+    mixes, close where the sexes' shares hardly move."""
+    women, men = years("f"), years("m")
+    right = Panel.persons(Panel.pooled(women), Panel.pooled(men))
+    grid = right.grid
+    infants = [sum(p.regroup(grid).deaths[0] for p in side) for side in (women, men)]
+    lived = [sum(p.regroup(grid).exposure[0] for p in side) for side in (women, men)]
+    np.testing.assert_allclose(right.infant_weight, np.array(infants) / sum(infants), rtol=1e-12)
+    own = np.array(infants) / lived / (sum(infants) / sum(lived))
+    np.testing.assert_allclose(right.infant_ratio, own, rtol=1e-12)
+    pairs = zip(women, men, strict=True)
+    near = Panel.pooled([Panel.persons(one, other) for one, other in pairs])
+    np.testing.assert_allclose(near.deaths, right.deaths)
+    np.testing.assert_allclose(near.infant_weight, right.infant_weight, rtol=1e-12)
+    np.testing.assert_allclose(near.infant_ratio, right.infant_ratio, atol=0.05)
+
+
+def test_a_whole_is_pooled_beside_its_part() -> None:
+    part, whole = years("f"), [gompertz_panel(seed=7, people=5e6)] * 3
+    beside = [replace(one, whole=other.regroup(one.grid)) for one, other in zip(part, whole,
+              strict=True)]  # fmt: skip
+    pooled = Panel.pooled(beside).whole
+    assert pooled is not None
+    np.testing.assert_allclose(pooled.deaths, 3 * whole[0].regroup(pooled.grid).deaths)
+    lacking = Panel.pooled([beside[0], part[2]]).whole
+    assert lacking is not None
+    assert np.isnan(lacking.deaths).all()  # not known of all years is not known
 
 
 def test_refusals() -> None:
