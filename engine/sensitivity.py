@@ -12,7 +12,8 @@ from engine.tables import Partials, pull
 ONE_PERCENT = 0.01
 ONE_MONTH = 1 / 12  # of a year
 LEAST_SHARE = 1e-6  # of the deaths at an age, where the number has no value without any
-CLOSE = 1e-11  # of the stated gain
+CLOSE = 1e-11  # of the stated gain, and
+ROUNDING = 1e-14  # of the number itself
 STEPS = 60
 
 
@@ -145,12 +146,13 @@ class _Lowered:
         above = np.where(np.isnan(at_none), self.part(low), at_none) - 1
         high, below = np.ones_like(low), np.full_like(low, -1.0)
         found, searching = np.full_like(low, np.nan), above >= 0
+        close = CLOSE + np.abs(ROUNDING * self.indicator.value(self.chain) / self.gain)
         for _ in range(STEPS):
             if not searching.any():
                 break
-            share = (low * below - high * above) / (below - above)
+            share = np.where(searching, (low * below - high * above) / (below - above), 1.0)
             left = self.part(share) - 1
-            met = searching & (np.abs(left) < CLOSE)
+            met = searching & (np.abs(left) < close)
             found, searching = np.where(met, share, found), searching & ~met
             beyond = left > 0
             # the end that stays a second time counts half, or it would never move
