@@ -50,7 +50,7 @@ def test_no_deaths_have_a_lower_limit_of_0_and_an_upper_one() -> None:
 
 
 def test_a_gap_stays_one_and_a_negative_count_has_no_limits() -> None:
-    got = exact_limits(np.array([np.nan, -1.0, 5.0]), 0.95)
+    got = exact_limits(np.array([np.nan, -0.5, 5.0]), 0.95)
     assert np.isnan(got.low).tolist() == np.isnan(got.high).tolist() == [True, True, False]
 
 
