@@ -98,7 +98,15 @@ class Local:
 
     mu: Array  # [..., age]
     relative: list[Array]  # d log mu / d parameter
-    bend: list[list[Array]]  # d2 mu / d parameters, divided by mu; the lower triangle
+    parts: list[Array]  # d log h / d parameter, h the sum of the terms
+    curves: dict[tuple[int, int], Array]  # d2 h / d parameters, divided by h; 0 between terms
+    keep: Array  # d log mu / d log h
+    twist: Array  # what parts j and k of h bend mu by beyond h's own bend
+
+    def bend(self, j: int, k: int) -> Array:
+        """d2 mu / d parameters j and k <= j, divided by mu."""
+        crossed = self.twist * self.parts[j] * self.parts[k]
+        return crossed + self.keep * self.curves[j, k] if (j, k) in self.curves else crossed
 
 
 def local(law: Law, groups: Groups, parameters: Array) -> Local:
@@ -122,17 +130,11 @@ def local(law: Law, groups: Groups, parameters: Array) -> Local:
         curves[j, j] = height
         h = h + height
     parts = [part / h for part in heights]
-    keep = 1 / (1 + h) if law.saturates else np.ones_like(h)
-    mu = h * keep
+    keep = np.asarray(1 / (1 + h) if law.saturates else np.ones_like(h))
+    mu = np.asarray(h * keep)
     twist = -2 * mu * keep if law.saturates else np.zeros_like(h)
-    bend = [
-        [
-            twist * parts[j] * parts[k] + (keep * (curves[j, k] / h) if (j, k) in curves else 0.0)
-            for k in range(j + 1)
-        ]
-        for j in range(len(parts))
-    ]
-    return Local(np.asarray(mu), [keep * part for part in parts], bend)
+    inside = {where: curve / h for where, curve in curves.items()}
+    return Local(mu, [keep * part for part in parts], parts, inside, keep, twist)
 
 
 def _exponential(term: Term, groups: Groups, level: Array, slope: Array) -> tuple[Array, ...]:

@@ -92,7 +92,7 @@ def information(here: Local, deaths: Array, exposure: Array, held: Flags) -> Arr
     return _symmetric(
         [
             [
-                total(deaths * here.relative[j] * here.relative[k] - residual * here.bend[j][k])
+                total(deaths * here.relative[j] * here.relative[k] - residual * here.bend(j, k))
                 for k in range(j + 1)
             ]
             for j in range(len(here.relative))
@@ -125,11 +125,11 @@ def solve(matrix: Array, right: Array) -> tuple[Array, Flags]:
     elimination without pivots, entry by entry, so that no population meets another and one without
     a solution stops no other.
 
-    Shape:   matrix [..., k, k], right [..., k] or [k] -> [..., k] and [...].
+    Shape:   matrix [..., k, k], right [..., k], which broadcast -> [..., k] and [...].
     """
     k = matrix.shape[-1]
     a = [[matrix[..., i, j] for j in range(k)] for i in range(k)]
-    b = [np.broadcast_to(right[..., i], matrix.shape[:-2]) for i in range(k)]
+    b = [right[..., i] for i in range(k)]
     positive = np.ones(matrix.shape[:-2], bool)
     for i in range(k):
         positive &= np.real(a[i][i]) > 0

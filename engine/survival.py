@@ -9,8 +9,8 @@ from engine.hazards import Groups, Law, local
 from engine.laws import Fit
 
 OLDEST = 150.0
-EDGES = np.array([0, 0.03, 0.1, 0.3, 1, 3, *range(10, 151, 10)], float)  # close where infants die
-NODES, WEIGHTS = np.polynomial.legendre.leggauss(10)
+EDGES = np.array([0, 0.03, 0.1, 0.3, 1, 3, *range(10, 131, 10), 150.0])  # close where infants die
+NODES, WEIGHTS = np.polynomial.legendre.leggauss(8)
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,7 +26,7 @@ def lives(law: Law, parameters: Array, centre: float, *, age: float = 0.0) -> Li
     """Life expectancy and years lost under a law from an age on, up to 150.
 
     With S the survivors and L the hazard summed from the age, the expectancy is the integral of S,
-    the years lost that of S L, and the derivative of the expectancy minus that of S dL; ten
+    the years lost that of S L, and the derivative of the expectancy minus that of S dL; eight
     Gauss-Legendre nodes to a piece, L in closed form.
 
     Shape:   parameters [..., parameter] -> [...]; real or complex.

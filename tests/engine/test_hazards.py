@@ -90,7 +90,7 @@ def test_derivatives(law: Law, where: Groups) -> None:
         for k in range(j + 1):
             slope = (there.mu * there.relative[k]).imag / h
             np.testing.assert_allclose(
-                here.mu * here.bend[j][k], slope, rtol=1e-9, atol=1e-13 * here.mu.max()
+                here.mu * here.bend(j, k), slope, rtol=1e-9, atol=1e-13 * here.mu.max()
             )
 
 
@@ -111,7 +111,7 @@ def test_slopes_of_nothing_and_nearly_nothing_join() -> None:
             atol=1e-18,
         )
         np.testing.assert_allclose(
-            here.mu * here.bend[1][1], 6.25 * np.exp(-3.0) * (1 / 3 + u**2 / 10), rtol=1e-5
+            here.mu * here.bend(1, 1), 6.25 * np.exp(-3.0) * (1 / 3 + u**2 / 10), rtol=1e-5
         )
 
 
