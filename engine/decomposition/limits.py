@@ -9,7 +9,8 @@ from scipy.special import ndtr, ndtri
 
 from engine.ages import AgeGrid, Array
 from engine.blocks import blocks
-from engine.chain import Chain, Reading, gradient, run
+from engine.chain import Chain, run
+from engine.decomposition.bends import bends
 from engine.decomposition.line import by_slope
 from engine.decomposition.stepwise import of_values, passed_through, stepwise
 from engine.decomposition.straight import Line
@@ -18,9 +19,6 @@ from engine.panel import Panel
 from engine.settings import Settings
 from engine.streams import PairDraws, pair_draws
 
-NODES, WEIGHTS = np.polynomial.legendre.leggauss(2)
-NUDGE = 1e-6  # relative; one rate's step where the bend of the gradient is read
-STILL = 1e-3  # relative change below which a rate's own bend is read, not told from its ends
 ROUNDING = 1e-7  # of the widest: what is left of a limit at an age that the number does not read
 LOST = 0.01  # share of the draws that may lack a figure
 
@@ -91,7 +89,7 @@ def _delta(
         by_death = [
             _per_death(this.grid.regroup(sign * own + line.step * bend, groups), chain)
             for sign, bend, chain in zip(
-                (1, -1), _bends(indicator, line, mean), (line.end, line.start), strict=True
+                (1, -1), bends(indicator, line, mean), (line.end, line.start), strict=True
             )
         ]
         variance = 2 * (by_death[0] * by_death[1] * shared).sum(axis=-1)
@@ -108,43 +106,6 @@ def _per_death(by_rate: Array, chain: Chain) -> Array:
     """[age moved, ..., group] in raw rates -> [group, ..., age moved] in deaths."""
     turned = np.ascontiguousarray(np.swapaxes(by_rate, 0, -1))
     return chain.rates.per_death(chain.rates.pull(turned))
-
-
-def _bends(indicator: Reading, line: Line, mean: Array) -> tuple[Array, Array]:
-    """Derivatives of the mean slope in the rates of the line's end and of its start, each
-    [age moved, ..., age]: the integrals of t H and (1 - t) H, H the second derivatives.
-
-    H is read by forward differences of the gradient at two nodes, enough for what are corrections
-    between ages. What an age's rate does to its own mean slope is not: there stand the kinks and
-    the open group. Of a number read off the table it follows from the ends, since contributions add
-    up to the difference, whose derivatives are the gradients there.
-    """
-    t = ((1 + NODES) / 2).reshape(-1, *(1,) * (mean.ndim - 1))
-    share, at, ages = (WEIGHTS / 2).reshape(-1, *(1,) * mean.ndim), t[..., None], mean.shape[-1]
-    nudged = 1 + NUDGE * np.eye(ages + 1, ages, -1)  # the first row moves none
-    beside = np.concatenate(
-        [
-            gradient(indicator, line.at(t, times=nudged[some].reshape(-1, *(1,) * mean.ndim, ages)))
-            for some in blocks(ages + 1, len(NODES) * mean.size // ages)
-        ]
-    )
-    way = NUDGE * np.moveaxis(line.from_mx + at * line.step, -1, 0)[..., None]
-    second = np.where(way > 0, (beside[1:] - beside[0]) / way, 0.0)
-    bends = (share * at * second).sum(axis=1), (share * (1 - at) * second).sum(axis=1)
-    if line.of_table:
-        for bend, end, sign in zip(bends, (line.end, line.start), (1, -1), strict=True):
-            _close(bend, line, sign * (gradient(indicator, end) - mean))
-    return bends
-
-
-def _close(bend: Array, line: Line, left: Array) -> None:
-    """Set what each rate does to its own mean slope so that all contributions together move by
-    `left` [..., age] more than by the mean slope itself."""
-    step, mx = line.step, np.maximum(line.from_mx, line.to_mx)
-    for x in range(len(bend)):
-        others = (np.delete(bend[x], x, axis=-1) * np.delete(step, x, axis=-1)).sum(axis=-1)
-        told = np.abs(step[..., x]) > STILL * mx[..., x]
-        bend[x, ..., x] = np.where(told, (left[..., x] - others) / step[..., x], bend[x, ..., x])
 
 
 def _simulated(

@@ -42,7 +42,6 @@ class Line:
     end: Chain
     from_mx: Array  # [..., age], of the batch of both
     to_mx: Array
-    of_table: bool  # whether the number is read off the table
 
     @classmethod
     def between(cls, start: Panel, end: Panel, settings: Settings, indicator: Reading) -> "Line":
@@ -57,7 +56,7 @@ class Line:
         from_mx, to_mx = np.broadcast_arrays(
             *(chain.mx if of_table else chain.rates.mx for chain in ends)
         )
-        return cls(*ends, from_mx, to_mx, of_table)
+        return cls(*ends, from_mx, to_mx)
 
     @property
     def step(self) -> Array:
