@@ -96,7 +96,7 @@ def inner(left: Array, right: Array) -> Array:
     """Trace of the product of two such matrices, [row]; the narrower bounds the sum."""
     half = min(len(left), len(right))
     twice = np.where(np.arange(half) == 0, 1.0, 2.0)[:, None, None]
-    return total((twice * left[:half] * right[:half]).reshape(-1, left.shape[2]))
+    return total((twice * left[:half] * right[:half]).reshape(half * left.shape[1], left.shape[2]))
 
 
 def total(values: Array) -> Array:

@@ -38,15 +38,30 @@ class Reason(IntEnum):
 
 @dataclass(frozen=True, slots=True)
 class Estimate:
-    """Value and interval limits, each of the batch's shape; nan where missing, with its reason."""
+    """Value, interval limits and standard error, each of the batch's shape; nan where missing, with
+    the reason. Limits may stand without a standard error: none can be told from no deaths."""
 
     value: Array
     low: Array
     high: Array
     reason: NDArray[np.uint8]
+    se: Array
 
     def __getitem__(self, where: Any) -> "Estimate":
         """Part of the batch."""
-        return Estimate(
-            *(np.asarray(part[where]) for part in (self.value, self.low, self.high, self.reason))
-        )
+        return Estimate(*(np.asarray(getattr(self, name)[where]) for name in self.__slots__))
+
+    def within(
+        self, low: Array, high: Array, se: Array, why: Reason | NDArray[np.integer[Any]]
+    ) -> "Estimate":
+        """The value with these limits; `why` is the reason where it stands without them."""
+        known, held = np.isfinite(self.value), np.isfinite(low) & np.isfinite(high)
+        reason = np.where(known, np.where(held, Reason.NONE, why), self.reason).astype(np.uint8)
+        low, high, se = (np.where(known & held, part, np.nan) for part in (low, high, se))
+        return Estimate(self.value, low, high, reason, se)
+
+    @classmethod
+    def bare(cls, value: Array, reason: NDArray[np.uint8], why: Reason) -> "Estimate":
+        """Values where there is no reason against them, without an interval, and why without."""
+        value, gap = np.where(reason == Reason.NONE, value, np.nan), np.full(value.shape, np.nan)
+        return cls(value, gap, gap, reason, gap).within(gap, gap, gap, why)

@@ -1,5 +1,8 @@
 """Why a value is missing: the one place where it is decided."""
 
+from collections.abc import Iterator
+from typing import Any
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -9,6 +12,10 @@ from engine.chain import Chain
 from engine.estimates import Reason
 from engine.indicator import Needs
 from engine.laws import LEAST_AGES
+from engine.panel import BIRTHS, Panel
+from engine.stages.rates import death_rates
+
+Rules = Iterator[tuple[Reason, Any]]  # what holds, of the batch's shape or for all of it
 
 
 def judge(needs: Needs, chain: Chain, value: Array) -> NDArray[np.uint8]:
@@ -16,42 +23,61 @@ def judge(needs: Needs, chain: Chain, value: Array) -> NDArray[np.uint8]:
 
     Where several hold, the one is given that must be mended first.
     """
-    settings, rates = chain.settings, chain.rates
-    deaths, exposure = np.real(rates.deaths), np.real(rates.exposure)
-    shape = value.shape
-    span = within(chain.panel.grid, settings.ageing_span)
-    off_grid = not all(chain.table.grid.has(age) for age in needs.ages)
-    unfitted = chain.modelled & np.isnan(np.real(chain.table.mx[..., -1]))
-    fitted_to = sum(start >= settings.fit_from for start in chain.panel.grid.starts[:-1])
-    no_law = Reason.NO_LAW if fitted_to >= LEAST_AGES else Reason.TOO_FEW_AGES
     with np.errstate(invalid="ignore"):
-        rules = (  # the first that holds is the reason
-            (Reason.NOT_AVAILABLE, np.isnan(deaths + exposure).any(axis=-1)),
-            (Reason.TOO_FEW_PERSON_YEARS, exposure.sum(axis=-1) < settings.least_exposure),
-            (Reason.NO_POPULATION, np.isnan(rates.mx).any(axis=-1)),
-            (Reason.NO_DEATHS, deaths.sum(axis=-1) == 0),
-            (Reason.AGE_NOT_ON_GRID, np.full(shape, off_grid)),
-            (no_law, (needs.open_small or needs.open_deaths) & unfitted),
-            (
-                Reason.OPEN_GROUP_TOO_LARGE,
-                needs.open_small & (chain.open_reach > settings.open_share) & (not chain.modelled),
-            ),
-            (
-                Reason.NO_DEATHS_IN_OPEN_GROUP,
-                needs.open_deaths
-                & (np.real(rates.mx[..., -1]) == 0)
-                & ~chain.borrowed
-                & (not chain.modelled),
-            ),
-            (
-                Reason.OPEN_AGE_TOO_LOW,
-                np.full(shape, needs.open_deaths and chain.open_too_low),
-            ),
-            (Reason.NO_DEATHS, needs.span_deaths & (deaths[..., span].sum(axis=-1) == 0)),
-            (needs.otherwise, ~np.isfinite(value)),
-        )
+        rules = (*_of_counts(needs, chain), *_of_ages(needs, chain))
+        rules += ((needs.otherwise, ~np.isfinite(value)),)
     return np.select(
-        [np.broadcast_to(holds, shape) for _, holds in rules],
+        [np.broadcast_to(holds, value.shape) for _, holds in rules],
         [np.uint8(reason) for reason, _ in rules],
         np.uint8(Reason.NONE),
     )
+
+
+def _of_counts(needs: Needs, chain: Chain) -> Rules:
+    """What was not handed in, or is too little."""
+    panel, rates, settings = chain.panel, chain.rates, chain.settings
+    deaths, exposure = np.real(rates.deaths), np.real(rates.exposure)
+    births = panel.births[..., [BIRTHS.index(name) for name in needs.births]]
+    total = deaths.sum(axis=-1)
+    yield Reason.NOT_AVAILABLE, np.isnan(deaths + exposure).any(axis=-1)
+    yield Reason.TOO_FEW_PERSON_YEARS, exposure.sum(axis=-1) < settings.least_exposure
+    yield Reason.NO_BIRTHS, np.isnan(births).any(axis=-1)
+    yield Reason.NO_WHOLE, needs.whole and not_known(panel.whole)
+    yield Reason.NO_STANDARD, needs.standard != "" and nobody(panel.standard)
+    yield Reason.NO_POPULATION, np.isnan(rates.mx).any(axis=-1)
+    yield Reason.NO_DEATHS, (total == 0) & (not needs.births)  # no infant's death is a figure
+    yield Reason.TOO_FEW_DEATHS, total < needs.least_deaths
+
+
+def _of_ages(needs: Needs, chain: Chain) -> Rules:
+    """Ages that are no group's, and an open group that hides what is read."""
+    settings, grid = chain.settings, chain.panel.grid
+    deaths = np.real(chain.rates.deaths)
+    unfitted = chain.modelled & np.isnan(np.real(chain.table.mx[..., -1]))
+    fitted_to = sum(start >= settings.fit_from for start in grid.starts[:-1])
+    no_law = Reason.NO_LAW if fitted_to >= LEAST_AGES else Reason.TOO_FEW_AGES
+    too_large = (chain.open_reach > settings.open_share) & (not chain.modelled)
+    empty = (np.real(chain.rates.mx[..., -1]) == 0) & ~chain.borrowed & (not chain.modelled)
+    in_span = deaths[..., within(grid, settings.ageing_span)].sum(axis=-1)
+    yield Reason.AGE_NOT_ON_GRID, not all(chain.table.grid.has(age) for age in needs.ages)
+    yield no_law, (needs.open_small or needs.open_deaths) & unfitted
+    yield Reason.OPEN_GROUP_TOO_LARGE, needs.open_small & too_large
+    yield Reason.NO_DEATHS_IN_OPEN_GROUP, needs.open_deaths & empty
+    yield Reason.OPEN_AGE_TOO_LOW, needs.open_deaths and chain.open_too_low
+    yield Reason.NO_DEATHS, needs.span_deaths & (in_span == 0)
+
+
+def not_known(whole: Panel | None) -> NDArray[np.bool_]:
+    """Where there is no larger area, or it lacks the rate of an age: [...]."""
+    if whole is None:
+        return np.array(True)
+    mx = death_rates(np.real(whole.deaths), np.real(whole.exposure)).mx
+    return np.asarray(np.isnan(mx).any(axis=-1))
+
+
+def nobody(standard: Panel | None) -> NDArray[np.bool_]:
+    """Where no standard is held, or it lacks the people of an age: [...]."""
+    if standard is None:
+        return np.array(True)
+    years = np.real(standard.exposure).sum(axis=-1)
+    return np.asarray(np.isnan(years) | (years == 0))

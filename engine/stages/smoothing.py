@@ -57,6 +57,8 @@ def smooth(grid: AgeGrid, rates: Rates, settings: Settings) -> Smoothed:
         curve = np.exp(fitted.log_rates(mids))
 
     def pull(g: Array) -> Array:
+        if g.ndim > curve.ndim:  # of several numbers
+            return np.stack([pull(one) for one in g])
         with np.errstate(all="ignore"):
             through = fitted.pull(mids, g[..., groups] * curve)
         return _placed(g, groups, np.where((g[..., groups] != 0).any(-1)[..., None], through, 0.0))

@@ -53,5 +53,17 @@ def reason(code: int, settings: Settings) -> str:
             " make life expectancy more than a year too long.",
             age=settings.least_open_age,
         ),
+        Reason.NO_BIRTHS: _(
+            "The births it is counted over, or the deaths around birth it counts, were not handed"
+            " in."
+        ),
+        Reason.NO_WHOLE: _(
+            "The area is part of no larger one whose death rates are known at every age."
+        ),
+        Reason.NO_STANDARD: _(
+            "The population whose ages it is weighted by is not held, or lacks an age."
+        ),
+        Reason.TOO_FEW_DEATHS: _("Too few people died for this figure to mean anything."),
+        Reason.NOT_DECOMPOSED: _("No exact share of this difference belongs to an age."),
     }
     return sentences[Reason(code)]

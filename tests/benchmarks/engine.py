@@ -15,8 +15,8 @@ from engine.chain import run
 from engine.indicators import INDICATORS, estimate
 from engine.panel import Panel
 from engine.settings import SETTINGS
+from engine.simulation import drawn
 from engine.streams import poisson_draws
-from engine.uncertainty import _drawn
 from tests.factories import GRIDS, codes, gompertz_panel
 
 PLAIN = SETTINGS["almanac-1"]
@@ -75,7 +75,7 @@ def intervals(grid: str) -> None:
 
     def simulated() -> object:
         deaths = poisson_draws(panel.deaths, chance, PLAIN.draws, "benchmark")
-        return np.quantile(_drawn([E0], panel, deaths, PLAIN)["e0"], [0.025, 0.975], axis=0)
+        return np.quantile(drawn([E0], panel, deaths, PLAIN)["e0"], [0.025, 0.975], axis=0)
 
     slow, fast = side_by_side(simulated, lambda: estimate(E0, panel, PLAIN))
     report(f"interval of e0, 40 populations, {grid} ages", ("400 draws", slow), ("delta", fast))

@@ -146,7 +146,7 @@ def table(found: Iterable[Coverage], *, ages: str, law: str) -> str:
 
 
 def _cell(one: Coverage) -> str:
-    if not one.covered == one.covered:
+    if np.isnan(one.covered):
         return "none"
     text = f"{100 * one.covered:.1f}"
     tails = sorted((one.above, one.below))
@@ -161,7 +161,7 @@ def main() -> None:
     asked = argparse.ArgumentParser(description=__doc__)
     asked.add_argument("--replicates", type=int, default=400)
     asked.add_argument("--sizes", type=int, nargs="*", default=SIZES)
-    asked.add_argument("--indicators", nargs="*", default=[k for k in INDICATORS])
+    asked.add_argument("--indicators", nargs="*", default=list(INDICATORS))
     asked.add_argument("--ages", nargs="*", default=list(AGES))
     asked.add_argument("--laws", nargs="*", default=list(LAWS))
     asked.add_argument("--settings", default="almanac-1")
@@ -181,7 +181,9 @@ def main() -> None:
                 again = {(ages, law, persons, one.indicator) for one in got}
                 found = [o for o in found if (o.ages, o.law, o.persons, o.indicator) not in again]
                 found += got
-                print(f"{ages}, {law}, {persons:,}: {time.perf_counter() - start:.0f} s", flush=True)
+                print(
+                    f"{ages}, {law}, {persons:,}: {time.perf_counter() - start:.0f} s", flush=True
+                )
                 if choice.to:
                     choice.to.write_text(json.dumps([asdict(one) for one in found], indent=0))
             print(f"\n{ages} ages, {law}\n\n{table(found, ages=ages, law=law)}\n", flush=True)

@@ -23,7 +23,8 @@ numbers = st.floats(-50, 50) | st.floats(-0.3, 0.3)
 
 
 def estimate(value: float, low: float = np.nan, high: float = np.nan) -> Estimate:
-    return Estimate(np.float64(value), np.float64(low), np.float64(high), np.uint8(0))  # type: ignore[arg-type]
+    numbers = (np.float64(part) for part in (value, low, high))
+    return Estimate(*numbers, np.uint8(0), np.float64(np.nan))  # type: ignore[arg-type]
 
 
 @st.composite

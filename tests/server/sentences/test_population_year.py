@@ -19,6 +19,7 @@ MISSING = Estimate(
     np.float64(np.nan),  # type: ignore[arg-type]
     np.float64(np.nan),  # type: ignore[arg-type]
     np.uint8(Reason.OPEN_GROUP_TOO_LARGE),  # type: ignore[arg-type]
+    np.float64(np.nan),  # type: ignore[arg-type]
 )
 KNOWN = {
     "median": estimate(84.45),

@@ -1,0 +1,91 @@
+"""Limits of numbers that jump, from tables simulated block by block."""
+
+import math
+from collections.abc import Callable, Sequence
+from dataclasses import replace
+
+import numpy as np
+
+from engine.ages import Array
+from engine.chain import run
+from engine.estimates import Estimate, Reason
+from engine.indicator import Indicator
+from engine.panel import Panel
+from engine.settings import Settings
+
+Draw = Callable[[Sequence[Indicator], slice], dict[str, Array]]  # of some rows: by key, [draw, row]
+
+BLOCK = 2048  # simulated tables held in memory at once
+FAILED = 0.01  # share of simulated tables that may lack the number; beyond it, no interval
+
+
+def simulated(
+    indicators: Sequence[Indicator], bare: dict[str, Estimate], draw: Draw, settings: Settings
+) -> dict[str, Estimate]:
+    """What is not smooth, with limits from draws made block by block, so that memory does not grow
+    with the batch.
+
+    Missing: no interval where more than 1 % of the draws lack the number.
+    Source:  Efron & Tibshirani (1993), An Introduction to the Bootstrap, chapter 13 (limits by the
+             quantiles of draws).
+    """
+    stepped = [one for one in indicators if not one.smooth]
+    if not stepped:
+        return {}
+    shape, step = bare[stepped[0].key].value.shape, max(1, BLOCK // settings.draws)
+    rows = math.prod(shape)
+    limits = {one.key: np.full((3, rows), np.nan) for one in stepped}
+    for first in range(0, rows, step):
+        where = slice(first, min(first + step, rows))
+        for key, values in draw(stepped, where).items():
+            limits[key][:2, where] = quantiles(values, settings.level)
+            limits[key][2, where] = spread(values)
+    return {
+        key: bare[key].within(
+            low.reshape(shape), high.reshape(shape), se.reshape(shape), Reason.OFTEN_LOST
+        )
+        for key, (low, high, se) in limits.items()
+    }
+
+
+def drawn(
+    indicators: Sequence[Indicator], panel: Panel, deaths: Array, settings: Settings
+) -> dict[str, Array]:
+    """The indicators of simulated deaths [draw, row, age]: by key, [draw, row]."""
+    batch = deaths.shape[:-1]
+    copies = panel.over(lambda array: np.broadcast_to(array, (*batch, array.shape[-1])))
+    with np.errstate(all="ignore"):
+        observed, redrawn = run(panel, settings), run(replace(copies, deaths=deaths), settings)
+        return {one.key: one.drawn(observed, redrawn) for one in indicators}
+
+
+def flat(panel: Panel) -> Panel:
+    """The same populations in one row."""
+    rows = math.prod(panel.batch_shape)
+    return panel.over(lambda array: array.reshape(rows, array.shape[-1]))
+
+
+def spread(values: Array) -> Array:
+    """Standard deviation of the draws [draw, row] that have the number: [row]."""
+    known = ~np.isnan(values)
+    count = np.maximum(known.sum(axis=0), 2)
+    mean = np.where(known, values, 0.0).sum(axis=0) / count
+    squares = np.where(known, (values - mean) ** 2, 0.0).sum(axis=0)
+    return np.asarray(np.sqrt(squares / (count - 1)))
+
+
+def quantiles(values: Array, level: float) -> Array:
+    """Lower and upper limit of draws [draw, row]: [2, row]; nan where too many draws are nan.
+
+    A further draw falls between two neighbours of n with the chance 1 / (n + 1): so are the ranks
+    counted, and the limits hold the level.
+    """
+    ordered = np.sort(values, axis=0)  # nan last
+    known = np.sum(~np.isnan(values), axis=0)
+    tails = np.array([(1 - level) / 2, (1 + level) / 2])[:, None]
+    place = np.clip(tails * (known + 1) - 1, 0, np.maximum(known - 1, 0))
+    below = np.floor(place).astype(int)
+    above = np.minimum(below + 1, len(values) - 1)
+    low, high = (np.take_along_axis(ordered, at, axis=0) for at in (below, above))
+    limits = low + (place - below) * np.where(place == below, 0.0, high - low)
+    return np.where(known >= (1 - FAILED) * len(values), limits, np.nan)
