@@ -16,7 +16,7 @@ from engine.panel import Panel
 from engine.settings import Settings
 from engine.tables import LifeTable
 from server.results.estimating import USUAL, differences, estimates, stream
-from server.results.loading import Holdings, Loaded, holdings, load, overlap, shared_deaths
+from server.results.loading import Holdings, Loaded, holdings, load, overlap, shared_part
 from server.results.questions import ComparisonQuestion, PopulationYear
 from server.results.revision import Moved, moved
 from server.store.connect import Session
@@ -100,7 +100,7 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
         _side(collection, one, loaded[one], grid, settings, keys)
         for one in (question.this, question.that)
     )
-    shared = shared_deaths(loaded[both].panel, this.panel, that.panel) if both else None
+    shared = shared_part(loaded[both].panel, this.panel, that.panel) if both else None
     codes = (stream(collection, question.this), stream(collection, question.that))
     difference = differences(keys, this.panel, that.panel, settings, codes, shared=shared)
     groups = _groups(grid)
@@ -171,13 +171,19 @@ def _contribution(
     that: Side,
     settings: Settings,
     codes: tuple[NDArray[np.str_], NDArray[np.str_]],
-    shared: Array | None,
+    shared: Panel | None,
     groups: AgeGrid,
 ) -> Contribution:
     indicator = indicators.find(key)
     parts = decomposition.contributions(indicator, this.panel, that.panel, settings)
     low, high = decomposition.contribution_limits(
-        indicator, this.panel, that.panel, settings, streams=codes, shared=shared, groups=groups
+        indicator,
+        this.panel,
+        that.panel,
+        settings,
+        streams=codes,
+        shared=None if shared is None else shared.deaths,
+        groups=groups,
     )
     return Contribution(
         parts.by_age,

@@ -6,7 +6,6 @@ import numpy as np
 from numpy.typing import NDArray
 
 from engine import indicators
-from engine.ages import Array
 from engine.estimates import Estimate
 from engine.panel import Panel
 from engine.settings import Settings
@@ -35,10 +34,10 @@ def differences(
     settings: Settings,
     codes: tuple[NDArray[np.str_], NDArray[np.str_]],
     *,
-    shared: Array | None = None,
+    shared: Panel | None = None,
 ) -> dict[str, Estimate]:
-    """This less that, both on one grid; `shared` deaths are counted once. `codes` are this one's
-    and that one's."""
+    """This less that, both on one grid; those in both, `shared`, are counted once. `codes` are
+    this one's and that one's."""
     return indicators.differences(_found(keys), this, that, settings, shared=shared, streams=codes)
 
 

@@ -5,7 +5,6 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from engine.ages import Array
 from engine.panel import Panel
 from server.results.questions import PopulationYear
 from server.sentences.names import listed
@@ -185,10 +184,14 @@ def _lineage(area: str, parents: dict[str, str]) -> Iterable[str]:
         area = parents.get(area, "")
 
 
-def shared_deaths(shared: Panel, this: Panel, that: Panel) -> Array:
-    """Deaths counted in both panels, on the grid they share.
+def shared_part(shared: Panel, this: Panel, that: Panel) -> Panel:
+    """The population counted in both panels, on the grid they share.
 
     An area delivered as such may count fewer than its parts do: no more are shared than it counts.
     """
-    both = shared.regroup(this.grid).deaths
-    return np.minimum(both, np.minimum(this.deaths, that.deaths))
+    both = shared.regroup(this.grid)
+    return replace(
+        both,
+        deaths=np.minimum(both.deaths, np.minimum(this.deaths, that.deaths)),
+        births=np.minimum(both.births, np.minimum(this.births, that.births)),
+    )

@@ -182,12 +182,13 @@ def _scattered(
     for place, own in enumerate(grids):
         if own is not None:
             places.setdefault(own, []).append(place)
-    value, low, high = (np.full(len(grids), np.nan) for _part in range(3))
+    value, low, high, se = (np.full(len(grids), np.nan) for _part in range(4))
     reason = np.full(len(grids), Reason.NOT_AVAILABLE, np.uint8)
     for grid, at in places.items():
         part = read(grid, at)
-        value[at], low[at], high[at], reason[at] = part.value, part.low, part.high, part.reason
-    return Estimate(value, low, high, reason)
+        value[at], low[at], high[at], se[at] = part.value, part.low, part.high, part.se
+        reason[at] = part.reason
+    return Estimate(value, low, high, reason, se)
 
 
 def _ends(values: NDArray[np.float64], periods: tuple[str, ...]) -> tuple[str, str] | None:

@@ -118,7 +118,7 @@ def test_limits_are_those_of_both_sides_streams_with_shared_deaths_drawn_once(
     this, that = found.this.panel, found.that.panel
     streams = stream("isle", found.this.of), stream("isle", found.that.of)
     median = indicators.difference(
-        indicators.find("median"), this, that, PLAIN, shared=this.deaths, streams=streams
+        indicators.find("median"), this, that, PLAIN, shared=this, streams=streams
     )
     assert (found.difference["median"].low, found.difference["median"].high) == (
         median.low,

@@ -9,7 +9,7 @@ from numpy.testing import assert_array_equal
 
 from engine.ages import AgeGrid
 from engine.panel import Panel
-from server.results.loading import NotInEdition, holdings, load, overlap, shared_deaths
+from server.results.loading import NotInEdition, holdings, load, overlap, shared_part
 from server.results.questions import PopulationYear
 from server.store.connect import Session
 from server.store.records import Area
@@ -148,6 +148,6 @@ def test_no_more_deaths_are_shared_than_either_counts(isle: Session) -> None:
     whole, part = of("isle.f.2014"), of("north.f.2014")
     loaded = load(isle, "isle", 1, [whole, part])
     inner, outer = loaded[part].panel.regroup(SHORT), loaded[whole].panel
-    assert_array_equal(shared_deaths(loaded[part].panel, outer, inner), inner.deaths)
+    assert_array_equal(shared_part(loaded[part].panel, outer, inner).deaths, inner.deaths)
     fewer = gompertz_panel(people=1_000).regroup(SHORT)
-    assert_array_equal(shared_deaths(loaded[part].panel, fewer, inner), fewer.deaths)
+    assert_array_equal(shared_part(loaded[part].panel, fewer, inner).deaths, fewer.deaths)
