@@ -10,10 +10,11 @@ from engine.decomposition.line import (
 )
 from engine.decomposition.path import Path, along
 from engine.decomposition.rates import RateParts, kitagawa, of_crude_rates
-from engine.decomposition.stepwise import Stepwise, stepwise
+from engine.decomposition.stepwise import NOT_DECOMPOSED, Stepwise, stepwise
 from engine.decomposition.unevenness import UnevennessParts, unevenness_parts
 
 __all__ = [
+    "NOT_DECOMPOSED",
     "CauseContributions",
     "Contributions",
     "Limits",

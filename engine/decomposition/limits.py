@@ -1,5 +1,6 @@
 """Limits within which chance in deaths leaves each age's contribution."""
 
+from collections.abc import Sequence
 from dataclasses import replace
 from typing import NamedTuple
 
@@ -11,7 +12,7 @@ from engine.ages import AgeGrid, Array
 from engine.blocks import blocks
 from engine.chain import Chain, run
 from engine.decomposition.bends import bends
-from engine.decomposition.line import by_slope
+from engine.decomposition.line import cause_steps, cells
 from engine.decomposition.stepwise import of_values, passed_through, stepwise
 from engine.decomposition.straight import Line
 from engine.indicator import Indicator
@@ -40,6 +41,7 @@ def contribution_limits(
     shared: Array | None = None,
     draws: int = 200,
     groups: AgeGrid | None = None,
+    causes: tuple[Array, Array] | None = None,
 ) -> Limits:
     """Limits of the contributions along the straight line, or of the stepwise ones where the
     indicator is not smooth, at the settings' level.
@@ -49,10 +51,13 @@ def contribution_limits(
     standard error by the delta method, for which the contribution of each age is derived in both
     columns of rates. Not smooth: the stepwise contributions of populations drawn anew, by keyed
     simulation, with bias-corrected percentile limits; for these `streams` are needed. With
-    `groups`, a coarser grid, they are limits of the sums over its groups.
+    `groups`, a coarser grid, they are limits of the sums over its groups; with `causes`, the deaths
+    of this and of that by cause, those of the contributions by cause (smooth only), deaths of
+    different causes moving by chance of their own.
 
     Shape:   panels of one shape, shared [..., age], streams of this and of that [...]
-             -> low, high [..., age], or [..., group].
+             -> low, high [..., age], or [..., group]; of causes and what is shared of them
+             [..., cause, age] -> [..., cause, age], or [..., cause, group].
     Missing: nan where the contribution is, where neither population has a death that moves it, and
              where more than 1 % of the draws give no figure.
     Raises:  as `contributions` and `poisson_draws`; ValueError where streams are needed and not
@@ -61,15 +66,22 @@ def contribution_limits(
              (1987), Journal of the American Statistical Association 82, 171-185 (bias-corrected
              percentiles).
     """
-    both = np.zeros_like(this.deaths) if shared is None else np.asarray(shared)
+    groups = groups or this.grid
+    if causes is not None:
+        in_both = np.zeros_like(causes[0]) if shared is None else shared
+        steps = cause_steps(this, that, causes)
+        return _delta(indicator, this, that, settings, steps, (*causes, in_both), groups)
+    in_both = np.zeros_like(this.deaths) if shared is None else shared
     if indicator.smooth:
-        return _delta(indicator, this, that, settings, both, groups or this.grid)
+        one_cause = [deaths[..., None, :] for deaths in (this.deaths, that.deaths, in_both)]
+        found = _delta(indicator, this, that, settings, None, one_cause, groups)
+        return Limits(*(end[..., 0, :] for end in found))
     if streams is None:
         raise ValueError(
             f"contributions to {indicator.label} are simulated, and no streams were given"
         )
-    drawn = pair_draws(this.deaths, that.deaths, both, streams, draws, "contributions")
-    return _simulated(indicator, this, that, settings, drawn, groups or this.grid)
+    drawn = pair_draws(this.deaths, that.deaths, in_both, streams, draws, "contributions")
+    return _simulated(indicator, this, that, settings, drawn, groups)
 
 
 def _delta(
@@ -77,29 +89,58 @@ def _delta(
     this: Panel,
     that: Panel,
     settings: Settings,
-    shared: Array,
+    steps: Array | None,
+    deaths: Sequence[Array],
     groups: AgeGrid,
 ) -> Limits:
-    """With s the mean slope on the line and A its derivative in one side's rates, a contribution
-    (m - m') s moves by s at the age itself and by (m - m') A at every age."""
-    line, both = Line.between(that, this, settings, indicator), (this, that)
+    """With s the mean slope on the line and B its derivative in one side's rates, what a cause
+    contributes, d s for a change d of its rate, moves by s with its own rate at the age, and by d B
+    with the rates of all causes at every age.
+
+    `deaths` of this, of that and of both are [..., cause, age]; without `steps`, the changes of the
+    causes' rates, there is one cause, and its rates are those of the line.
+    """
+    line = Line.between(that, this, settings, indicator)
+    steps = line.step[..., None, :] if steps is None else steps
     with np.errstate(all="ignore"):
         mean = line.mean_slope(indicator)
-        own = np.moveaxis(mean[..., None] * np.eye(len(this.grid)), -1, 0)  # [moved, ..., age]
-        by_death = [
-            _per_death(this.grid.regroup(sign * own + line.step * bend, groups), chain)
+        own = np.moveaxis(mean[..., None] * np.eye(len(this.grid)), -1, 0)
+        moves = [
+            _Moves(
+                _per_death(this.grid.regroup(sign * own, groups), chain)[:, None],
+                _per_death(this.grid.regroup(bend[:, None] * _first(steps), groups), chain),
+            )
             for sign, bend, chain in zip(
                 (1, -1), bends(indicator, line, mean), (line.end, line.start), strict=True
             )
         ]
-        variance = 2 * (by_death[0] * by_death[1] * shared).sum(axis=-1)
-        for moved, panel in zip(by_death, both, strict=True):
-            variance += (moved**2 * panel.deaths).sum(axis=-1)
-        half = ndtri((1 + settings.level) / 2) * np.sqrt(np.moveaxis(variance, 0, -1))
-        half = np.where(half > ROUNDING * half.max(axis=-1, keepdims=True), half, np.nan)
-    found = by_slope(mean, line.step, line.difference(indicator))
-    value = this.grid.regroup(found.by_age, groups)
+        ours, theirs, both = (_first(counts) for counts in deaths)
+        variance = _together(moves[0], moves[0], ours) + _together(moves[1], moves[1], theirs)
+        variance += 2 * _together(moves[0], moves[1], both)
+        half = ndtri((1 + settings.level) / 2) * np.sqrt(np.moveaxis(variance, (0, 1), (-1, -2)))
+        widest = half.max(axis=(-2, -1), keepdims=True)
+        half = np.where(half > ROUNDING * widest, half, np.nan)
+    value = this.grid.regroup(cells(mean, steps, line.difference(indicator)), groups)
     return Limits(value - half, value + half)
+
+
+class _Moves(NamedTuple):
+    """What one death more at an age moves the contributions of a cause by, [group, cause, ..., age
+    of the death]."""
+
+    own: Array  # a death of that cause, through its own rate
+    all: Array  # a death of any cause, through the slopes
+
+
+def _together(one: _Moves, other: _Moves, deaths: Array) -> Array:
+    """The covariance that deaths [cause, ..., age] in both give them, [group, cause, ...]."""
+    by_own = one.own * other.own + one.own * other.all + one.all * other.own
+    return np.asarray((by_own * deaths + one.all * other.all * deaths.sum(axis=0)).sum(axis=-1))
+
+
+def _first(by_cause: Array) -> Array:
+    """[..., cause, age] -> [cause, ..., age]"""
+    return np.ascontiguousarray(np.moveaxis(by_cause, -2, 0))
 
 
 def _per_death(by_rate: Array, chain: Chain) -> Array:

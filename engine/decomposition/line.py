@@ -55,14 +55,9 @@ def contributions(
     Source:  Horiuchi, Wilmoth & Pletcher (2008), Demography 45 (line integral).
     """
     line = Line.between(that, this, settings, indicator)
-    return by_slope(line.mean_slope(indicator), line.step, line.difference(indicator))
-
-
-def by_slope(mean: Array, step: Array, difference: Array) -> Contributions:
-    """An age contributes the mean slope there times the change of its rate."""
-    with np.errstate(all="ignore"):
-        by_age = np.where(np.isfinite(difference)[..., None], mean * step, np.nan)
-        return Contributions(by_age, difference - by_age.sum(axis=-1), difference)
+    difference = line.difference(indicator)
+    by_age = cells(line.mean_slope(indicator), line.step[..., None, :], difference)[..., 0, :]
+    return Contributions(by_age, difference - by_age.sum(axis=-1), difference)
 
 
 def contributions_by_cause(
@@ -85,20 +80,32 @@ def contributions_by_cause(
     Raises:  as `contributions`; ValueError where the causes do not add up to all deaths.
     Source:  Horiuchi, Wilmoth & Pletcher (2008), Demography 45 (line integral, ages and causes).
     """
+    line, step = Line.between(that, this, settings, indicator), cause_steps(this, that, causes)
+    difference = line.difference(indicator)
+    by_cause = cells(line.mean_slope(indicator), step, difference)
+    return CauseContributions(by_cause, difference - by_cause.sum(axis=(-2, -1)), difference)
+
+
+def cells(mean: Array, steps: Array, difference: Array) -> Array:
+    """Each cause contributes the mean slope at its age times the change of its rate, where there is
+    a difference at all: [..., cause, age]."""
+    with np.errstate(all="ignore"):
+        return np.where(
+            np.isfinite(difference)[..., None, None], mean[..., None, :] * steps, np.nan
+        )
+
+
+def cause_steps(this: Panel, that: Panel, causes: tuple[Array, Array]) -> Array:
+    """What each cause's rates change by, this less that, [..., cause, age].
+
+    Raises: ValueError where the causes do not add up to all deaths.
+    """
+    rates = []
     for panel, deaths in zip((this, that), causes, strict=True):
         _require_all(panel, deaths)
-    line = Line.between(that, this, settings, indicator)
-    difference = line.difference(indicator)
-    rates = (
-        death_rates(deaths, np.ascontiguousarray(panel.exposure[..., None, :])).mx
-        for panel, deaths in zip((this, that), causes, strict=True)
-    )
-    with np.errstate(all="ignore"):
-        step = np.subtract(*rates)
-        by_cause = line.mean_slope(indicator)[..., None, :] * step
-        by_cause = np.where(np.isfinite(difference)[..., None, None], by_cause, np.nan)
-        remainder = difference - by_cause.sum(axis=(-2, -1))
-    return CauseContributions(by_cause, remainder, difference)
+        exposure = np.ascontiguousarray(panel.exposure[..., None, :])
+        rates.append(death_rates(deaths, exposure).mx)
+    return np.asarray(rates[0] - rates[1])
 
 
 def _require_all(panel: Panel, causes: Array) -> None:

@@ -12,6 +12,16 @@ from engine.decomposition.straight import require_one_grid
 from engine.panel import BESIDE, Panel
 from engine.settings import Settings
 
+# words for the reader on numbers whose ages no method tells: between Danes of two years their
+# order_share is mostly above 0.6, that of other numbers that are not smooth never above 0.43
+_SEAM = (
+    "It is read off the shape of death rates around one age. To tell the ages' parts, populations"
+    " would have to be put together from the younger ages of one and the older ages of the other;"
+    " the seam then makes a shape that neither has, and the parts come out as large steps to and"
+    " fro, at other ages for another order of replacing."
+)
+NOT_DECOMPOSED = dict.fromkeys(("mode", "mode_raw", "mode_parabola"), _SEAM)
+
 OF_FIRST_AGE = ("infant_weight", "infant_ratio", "births")
 
 
@@ -46,8 +56,8 @@ def stepwise(indicator: Reading, this: Panel, that: Panel, settings: Settings) -
     the counts the same ages as of the counts.
 
     Of a number that jumps, one age may be given a whole jump because its turn came last before it,
-    and the two orders then name different ages: `order_share` tells. A step from one age group to
-    another, such as the group with most deaths, is not decomposed by this or any other method.
+    and the two orders then name different ages: `order_share` tells. Numbers of which that is the
+    rule are named in NOT_DECOMPOSED, with the reason.
 
     Shape:   panels [..., age] on one grid; batches broadcast.
     Missing: nan where either value is, and where one of the populations passed through has none.
