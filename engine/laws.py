@@ -153,15 +153,22 @@ class Fit:
             return self.pull_parameters(np.stack(by_parameter, axis=-1))
 
     def pull_parameters(self, g: Array) -> Array:
-        """The same from the gradient in the parameters, [..., parameter] -> [..., age], by the
-        implicit function theorem: the score is 0 at the fit, so d parameters =
-        information^-1 d score. One at its bound passes nothing on."""
+        """The same from the gradient in the parameters, [..., parameter] -> [..., age]."""
+        return np.asarray(self.exposure * self.per_death(g))
+
+    def per_death(self, g: Array) -> Array:
+        """What one death more in each fitted group moves, [..., age], from the gradient in the
+        parameters, [..., parameter]; 0 where there are no person-years.
+
+        By the implicit function theorem: the score is 0 at the fit, so d parameters =
+        information^-1 d score. One at its bound passes nothing on.
+        """
         with np.errstate(all="ignore"):
             here = local(self.law, self.groups, self.parameters)
             matrix = information(here, self.deaths, self.exposure, self.at_bound)
             to, _ = solve(matrix, np.where(self.at_bound, 0.0, g))
             moved = sum(to[..., j, None] * part for j, part in enumerate(here.relative))
-            return np.asarray(self.exposure * moved)
+            return np.where(self.exposure == 0, 0.0, moved)
 
 
 def fit(

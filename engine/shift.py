@@ -150,11 +150,8 @@ def _logs(law: Law, plain: Array, centre: float) -> Array:
 
 def _moved(chain: Chain, sides: tuple[Fit, Fit], which: int) -> Array:
     """What one death more on one side moves each value by: [value, ..., age]."""
-    own = sides[which]
-    years = np.where(own.exposure > 0, own.exposure, np.nan)
-    by_death = own.pull_parameters(_by_parameters(sides, which)) / years
+    by_death = sides[which].per_death(_by_parameters(sides, which))
     parts = np.concatenate([by_death, np.zeros_like(by_death[..., :1])], axis=-1)
-    parts = np.where(chain.panel.deaths > 0, parts, 0.0)
     at_birth = (np.arange(len(chain.table.grid)) == 0).astype(float)
     table = chain.rates.per_death(chain.pull(Partials(ex=at_birth)))
     table = table if which == 0 else -table
