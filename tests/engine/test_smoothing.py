@@ -166,6 +166,15 @@ def test_the_pullback_is_the_complex_step(weight: float) -> None:
     assert largest_error(pulled, complex_step(value, deaths / years)) < 1e-10
 
 
+def test_an_imaginary_part_settles_though_the_real_one_is_there_from_the_start() -> None:
+    deaths, years = counts(people=50_000)
+    there = fit(BASIS, AGES, deaths, years)
+    near = Curve(BASIS, there.coefficients + 6e-8 * np.cos(np.arange(BASIS.size)), there.penalty)
+    at, g = np.array([75.0]), np.ones(1)
+    beside = fit(BASIS, AGES, deaths + 1e-30j * years, years, start=near).log_rates(at).imag
+    assert beside / 1e-30 == pytest.approx(there.pull(at, g).sum(), rel=1e-9)
+
+
 def test_complex_counts_keep_the_penalty_of_their_real_part() -> None:
     deaths, years = counts()
     real, beside = (fit(BASIS, AGES, part, years) for part in (deaths, deaths * (1 + 1e-30j)))

@@ -96,6 +96,20 @@ def test_a_group_without_person_years_takes_the_curve_and_owns_no_part_of_it() -
     assert (got.pull(g)[:, 7] != 0).all()
 
 
+def test_deaths_of_a_group_without_person_years_count_in_the_one_below() -> None:
+    grid = GRIDS["abridged"]
+    counted, groups = drawn(grid), adult_groups(grid)
+    exposure = counted.exposure.copy()
+    exposure[:, 8] = 0
+    rates = death_rates(counted.deaths, exposure)
+    assert (rates.deaths[:, 8] > 0).all()
+    moved = rates.deaths.copy()
+    moved[:, 7] += moved[:, 8]
+    moved[:, 8] = 0
+    expected = smoothed(grid, death_rates(moved, exposure)).mx[:, groups]
+    np.testing.assert_allclose(smoothed(grid, rates).mx[:, groups], expected, rtol=1e-12)
+
+
 def test_gaps() -> None:
     grid = GRIDS["abridged"]
     rates = drawn(grid)
