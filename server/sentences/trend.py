@@ -111,7 +111,7 @@ def answer(course: Course | None, label: str, who: str) -> Sentence:
     if (
         unit.key == "years"
         and course.indicator.key.startswith("e")
-        and course.indicator.key != "edagger"
+        and not course.indicator.key.startswith("edagger")
     ):
         text = (
             _("{who} gained {amount} of {label} between {first} and {last} {interval}.")
