@@ -1,15 +1,16 @@
-"""What moves a smooth number: chance in every count behind it; and limits on the scale it has."""
+"""What moves a smooth number: chance in every count behind it, and the limits that leaves."""
 
-from collections.abc import Callable, Iterable, Sequence
-from dataclasses import dataclass
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass, replace
 
 import numpy as np
-from scipy.special import expit, logit, ndtri
+from scipy.special import ndtri
 
-from engine.ages import Array
-from engine.chain import Chain, Tally
+from engine.ages import AgeGrid, Array
+from engine.chain import Chain, Tally, run
 from engine.count_limits import Interval, gamma_limits
 from engine.indicator import Indicator, Limits
+from engine.settings import Settings
 from engine.tables import Partials
 
 STACKED = 2**18  # derivatives by one column that are pulled back at once
@@ -21,47 +22,85 @@ class Chance:
 
     weights: Array  # [..., count]
     counts: Array  # [..., count]
+    astray: Array  # [...], standard deviation owed to persons counted wrongly
 
     @property
     def variance(self) -> Array:
-        """Of the number, sum w^2 D: [...]."""
+        """Of the number by chance in counts, sum w^2 D: [...]."""
         return np.asarray((self.weights**2 * self.counts).sum(axis=-1))
 
     @property
     def se(self) -> Array:
         """Standard error, [...]; nan where nothing was counted, which tells nothing of chance."""
         variance = self.variance
-        return np.asarray(np.sqrt(np.where(variance > 0, variance, np.nan)))
+        return np.asarray(np.sqrt(np.where(variance > 0, variance + self.astray**2, np.nan)))
+
+
+def told(one: Indicator) -> bool:
+    """Whether chance in it is told from slopes or from its count; otherwise it is simulated."""
+    return one.smooth or one.unit.limits == "count"
 
 
 def chances(indicators: Sequence[Indicator], chain: Chain) -> dict[str, Chance]:
-    """What moves each indicator that is smooth, by its key.
+    """What moves each indicator, by its key; those that are simulated are left out."""
+    found = [one for one in indicators if told(one)]
+    astray, step = _astray(found, chain), max(1, STACKED // max(1, chain.table.mx.size))
+    behind: dict[str, tuple[Array, Array]] = {}
+    for first in range(0, len(found), step):
+        behind |= _counts_behind(found[first : first + step], chain)
+    return {one.key: Chance(*behind[one.key], astray[one.key]) for one in found}
 
-    The pullback walks through the ages in Python, so that many indicators are taken through it
-    together; the bits of each are those it has alone.
-    """
-    found: dict[str, Chance] = {}
-    smooth = [one for one in indicators if one.smooth]
-    step = max(1, STACKED // max(1, chain.table.mx.size))
-    for first in range(0, len(smooth), step):
-        slopes = {one.key: one.partials(chain) for one in smooth[first : first + step]}
-        by_column = {key: by for key, by in slopes.items() if isinstance(by, Partials)}
-        by_rate = {key: by for key, by in slopes.items() if isinstance(by, np.ndarray)}
-        tallies = {key: by for key, by in slopes.items() if isinstance(by, Tally)}
-        if by_column:
-            pulled = chain.pull(_side_by_side(by_column.values(), chain.table.mx.shape))
-            found |= _by_death(by_column, pulled, chain)
-        if by_rate:
-            pulled = chain.rates.pull(np.stack(list(by_rate.values())))
-            found |= _by_death(by_rate, pulled, chain)
-        for key, by in tallies.items():
-            found[key] = Chance(by.weight[..., None], by.count[..., None])
+
+def _counts_behind(indicators: Sequence[Indicator], chain: Chain) -> dict[str, tuple[Array, Array]]:
+    """Weights and counts of each. The pullback walks through the ages in Python, so that many
+    numbers are taken through it together; the bits of each are those it has alone."""
+    slopes = {one.key: one.partials(chain) for one in indicators}
+    by_column = {key: by for key, by in slopes.items() if isinstance(by, Partials)}
+    by_rate = {key: by for key, by in slopes.items() if isinstance(by, np.ndarray)}
+    found = {
+        key: (by.weight[..., None], by.count[..., None])
+        for key, by in slopes.items()
+        if isinstance(by, Tally)
+    }
+    pulled = []
+    if by_column:
+        pulled.append(chain.pull(_side_by_side(by_column.values(), chain.table.mx.shape)))
+    if by_rate:
+        pulled.append(chain.rates.pull(np.stack(list(by_rate.values()))))
+    if pulled:
+        weights = chain.rates.per_death(np.concatenate(pulled))
+        for key, own in zip((*by_column, *by_rate), weights, strict=True):
+            found[key] = (own, chain.panel.deaths)
     return found
 
 
-def _by_death(keys: Iterable[str], pulled: Array, chain: Chain) -> dict[str, Chance]:
-    weights = chain.rates.per_death(pulled)
-    return {key: Chance(own, chain.panel.deaths) for key, own in zip(keys, weights, strict=True)}
+def _astray(indicators: Sequence[Indicator], chain: Chain) -> dict[str, Array]:
+    """Standard deviation of each number that is owed to persons counted wrongly: half of what it
+    moves by from one standard deviation too few to one too many, at all ages alike."""
+    panel, settings = chain.panel, chain.settings
+    error = miscount(panel.grid, settings)
+    if not error.any():
+        return {one.key: np.zeros(panel.batch_shape) for one in indicators}
+    fewer, more = (
+        run(replace(panel, exposure=panel.exposure * side), settings)
+        for side in (1 - error, 1 + error)
+    )
+    with np.errstate(all="ignore"):
+        return {one.key: np.abs(one.value(fewer) - one.value(more)) / 2 for one in indicators}
+
+
+def miscount(grid: AgeGrid, settings: Settings) -> Array:
+    """Relative error of the person-years of each group, one standard deviation, [age]; a group has
+    that of the age it begins at.
+
+    >>> some = Settings("", "", "one_over_m", population_error=((65, 2.0),))
+    >>> miscount(AgeGrid((0, 65, 85)), some)
+    array([0.  , 0.02, 0.02])
+    """
+    error = np.zeros(len(grid))
+    for age, percent in sorted(settings.population_error):
+        error[np.array(grid.starts) >= age] = percent / 100
+    return error
 
 
 def _side_by_side(parts: Iterable[Partials], shape: tuple[int, ...]) -> Partials:
@@ -77,39 +116,57 @@ def _side_by_side(parts: Iterable[Partials], shape: tuple[int, ...]) -> Partials
     )
 
 
-def limits(kind: Limits, value: Array, chance: Chance, level: float) -> Interval:
-    """Limits of a number on the scale that its kind names (see engine.indicator.Unit).
+@dataclass(frozen=True, slots=True)
+class Kind:
+    """How limits of a kind of number are taken."""
 
-    Missing: nan where nothing was counted, but for sums of counts, whose upper limit then tells
-             how many there might have been.
-    Source:  as in `engine.uncertainty.estimates`.
-    """
-    with np.errstate(all="ignore"):
-        return LIMITS[kind](value, chance, level)
+    more: float  # deaths there might have been, where one weighs most, though none was counted
+    least: float  # no limit lies below
+    most: float  # or above
 
 
-def _evenly(value: Array, chance: Chance, level: float) -> Interval:
-    half = _quantile(level) * chance.se
-    return Interval(value - half, value + half)
-
-
-def _by_odds(value: Array, chance: Chance, level: float) -> Interval:
-    """As far apart to first order on the scale of log odds: none passes 0 or 1."""
-    centre, reach = logit(value), _quantile(level) * chance.se / (value * (1 - value))
-    return Interval(expit(centre - reach), expit(centre + reach))
-
-
-def _by_counts(value: Array, chance: Chance, level: float) -> Interval:
-    return gamma_limits(value, chance.variance, chance.weights.max(axis=-1), level)
-
-
-def _quantile(level: float) -> float:
-    return float(ndtri((1 + level) / 2))
-
-
-LIMITS: dict[Limits, Callable[[Array, Chance, float], Interval]] = {
-    "even": _evenly,
-    "odds": _by_odds,
-    "gamma": _by_counts,
-    "count": _by_counts,
+KINDS: dict[Limits, Kind] = {
+    "mixed": Kind(0.5, -np.inf, np.inf),
+    "part": Kind(1.0, 0.0, 1.0),
+    "gamma": Kind(1.0, 0.0, np.inf),
+    "count": Kind(1.0, 0.0, np.inf),
 }
+
+
+def limits(kind: Limits, value: Array, chance: Chance, level: float) -> Interval:
+    """Limits of a number from the gamma laws of the deaths behind it.
+
+    To first order a number is a constant, and a weighted sum of the deaths that raise it, less one
+    of those that lower it. Each sum has its own gamma limits, skew where few deaths weigh much: by
+    Pythagoras of how far the first reaches down and the second up, so far does the number reach
+    down; likewise up. A sum of counts keeps the limits of Fay and Feuer, one count the exact ones.
+
+    For rates, counts and parts of a whole the upper ends allow for one death more where it weighs
+    most, so that the truth is never missed too often; for other numbers for half of one, as mid-p
+    limits do, which comes nearest to the level (tests/studies/coverage.md). Persons counted wrongly
+    widen both sides, as one more part that is independent of the deaths.
+
+    Shape:   value [...], chance [..., count] -> [...] each.
+    Source:  Fay & Feuer (1997), Statistics in Medicine 16, 791-801 (gamma limits); Fay & Kim
+             (2017), Biometrical Journal 59, 377-387 (mid-p gamma limits); Zou & Donner (2008),
+             Statistics in Medicine 27, 1693-1702 (limits of a difference from those of its parts).
+    """
+    own = KINDS[kind]
+    with np.errstate(all="ignore"):
+        raised, lowered = (
+            _reach(np.maximum(sign * chance.weights, 0.0), chance.counts, level, own.more)
+            for sign in (1, -1)
+        )
+        astray = float(ndtri((1 + level) / 2)) * chance.astray
+        low = value - np.sqrt(raised.low**2 + lowered.high**2 + astray**2)
+        high = value + np.sqrt(raised.high**2 + lowered.low**2 + astray**2)
+    return Interval(np.clip(low, own.least, own.most), np.clip(high, own.least, own.most))
+
+
+def _reach(weights: Array, counts: Array, level: float, more: float) -> Interval:
+    """How far the limits of sum w D, w at least 0, lie below and above it."""
+    total, largest = (weights * counts).sum(axis=-1), weights.max(axis=-1)
+    variance = (weights**2 * counts).sum(axis=-1)
+    low, high = gamma_limits(total, variance, largest, level, more=more)
+    nothing = largest == 0
+    return Interval(*(np.where(nothing, 0.0, far) for far in (total - low, high - total)))

@@ -31,14 +31,17 @@ def exact_limits(count: Array, level: float) -> Interval:
     return gamma_limits(count, count, one, level)
 
 
-def gamma_limits(value: Array, variance: Array, largest_weight: Array, level: float) -> Interval:
+def gamma_limits(
+    value: Array, variance: Array, largest_weight: Array, level: float, *, more: float = 1.0
+) -> Interval:
     """Limits of y = sum w D, D Poisson counts and w their weights.
 
     With variance v = sum w^2 D and k the largest weight: the lower limit is a quantile of the gamma
     law of mean y and variance v, the upper one of that of mean y + k and variance v + k^2, as if
-    one death more had fallen where it weighs most.
+    one death more had fallen where it weighs most; or `more` deaths, of mean y + c k and variance
+    v + c k^2.
 
-    Where all weights are equal the limits are exact (`exact_limits`).
+    Where all weights are equal the limits are exact (`exact_limits`), with one death more.
 
     Shape:   value, variance, largest_weight [...] -> [...] each.
     Missing: nan in, nan out. Without deaths (y = v = 0) the lower limit is 0.
@@ -49,7 +52,8 @@ def gamma_limits(value: Array, variance: Array, largest_weight: Array, level: fl
     with np.errstate(all="ignore"):
         low = _gamma_quantile(value, variance, tail)
         low = np.where((value == 0) & (variance == 0), 0.0, low)
-        high = _gamma_quantile(value + largest_weight, variance + largest_weight**2, 1 - tail)
+        beyond = value + more * largest_weight, variance + more * largest_weight**2
+        high = _gamma_quantile(*beyond, 1 - tail)
     return Interval(low, np.where(np.isnan(low), np.nan, high))
 
 

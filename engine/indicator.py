@@ -8,25 +8,25 @@ from engine.ages import Array
 from engine.chain import Chain, Slopes
 from engine.estimates import Reason
 
-Limits = Literal["even", "odds", "gamma", "count"]
+Limits = Literal["mixed", "part", "gamma", "count"]
 
 
 @dataclass(frozen=True, slots=True)
 class Unit:
     """What a printed figure counts. The engine speaks per person-year and in years only; `scale`
-    turns its number into the printed one, for display and nowhere else. `limits` says on which
-    scale an interval is taken, so that its ends are numbers of the same kind:
+    turns its number into the printed one, for display and nowhere else. `limits` says of what
+    kind it is, so that the ends of its interval are numbers of the same kind (engine.chance):
 
-    even:  the value and as much on both sides;
-    odds:  of a part of a whole, between 0 and 1, on the scale of log odds;
-    gamma: of a rate, a weighted sum of counts, by the gamma law (exact where the weights are one);
+    mixed: some deaths raise it and others lower it;
+    part:  of a whole, between 0 and 1;
+    gamma: a rate, a weighted sum of counts (its limits are exact where the weights are one);
     count: of a count over births, exact. Its indicator gives a Tally in place of derivatives."""
 
     key: str
     label: str
     scale: float
     decimals: int
-    limits: Limits = "even"
+    limits: Limits = "mixed"
 
 
 @dataclass(frozen=True, slots=True)

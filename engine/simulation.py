@@ -5,17 +5,21 @@ from collections.abc import Callable, Sequence
 from dataclasses import replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from engine.ages import Array
 from engine.chain import run
+from engine.chance import miscount, told
 from engine.estimates import Estimate, Reason
 from engine.indicator import Indicator
 from engine.panel import Panel
 from engine.settings import Settings
+from engine.streams import normal_draws
 
 Draw = Callable[[Sequence[Indicator], slice], dict[str, Array]]  # of some rows: by key, [draw, row]
 
 BLOCK = 2048  # simulated tables held in memory at once
+MISCOUNT = "population error"  # purpose of the streams by which person-years are drawn
 FAILED = 0.01  # share of simulated tables that may lack the number; beyond it, no interval
 
 
@@ -29,7 +33,7 @@ def simulated(
     Source:  Efron & Tibshirani (1993), An Introduction to the Bootstrap, chapter 13 (limits by the
              quantiles of draws).
     """
-    stepped = [one for one in indicators if not one.smooth]
+    stepped = [one for one in indicators if not told(one)]
     if not stepped:
         return {}
     shape, step = bare[stepped[0].key].value.shape, max(1, BLOCK // settings.draws)
@@ -49,13 +53,25 @@ def simulated(
 
 
 def drawn(
-    indicators: Sequence[Indicator], panel: Panel, deaths: Array, settings: Settings
+    indicators: Sequence[Indicator],
+    panel: Panel,
+    deaths: Array,
+    settings: Settings,
+    streams: NDArray[np.str_],
 ) -> dict[str, Array]:
-    """The indicators of simulated deaths [draw, row, age]: by key, [draw, row]."""
-    batch = deaths.shape[:-1]
+    """The indicators of simulated deaths [draw, row, age]: by key, [draw, row].
+
+    Where the settings say that persons are counted wrongly, person-years are drawn too: in each
+    table all ages are out by one and the same number of standard deviations.
+    """
+    batch, error = deaths.shape[:-1], miscount(panel.grid, settings)
     copies = panel.over(lambda array: np.broadcast_to(array, (*batch, array.shape[-1])))
+    counts = replace(copies, deaths=deaths)
+    if error.any():
+        out = normal_draws(streams, len(deaths), MISCOUNT)[..., None]
+        counts = replace(counts, exposure=panel.exposure * np.exp(error * out))
     with np.errstate(all="ignore"):
-        observed, redrawn = run(panel, settings), run(replace(copies, deaths=deaths), settings)
+        observed, redrawn = run(panel, settings), run(counts, settings)
         return {one.key: one.drawn(observed, redrawn) for one in indicators}
 
 

@@ -47,6 +47,19 @@ def poisson_draws(deaths: Array, streams: NDArray[np.str_], draws: int, purpose:
     return np.where(known, drawn, np.nan).reshape(draws, *deaths.shape)
 
 
+def normal_draws(streams: NDArray[np.str_], draws: int, purpose: str) -> Array:
+    """Standard normal numbers, one a population and draw: streams [...] -> [draw, ...].
+
+    >>> normal_draws(np.array(["atoll.f.2001", "atoll.m.2001"]), 3, "example").shape
+    (3, 2)
+    """
+    streams = np.asarray(streams)
+    drawn = np.empty((draws, streams.size))
+    for row, code in enumerate(streams.ravel().tolist()):
+        drawn[:, row] = generator(purpose, code).standard_normal(draws)
+    return drawn.reshape(draws, *streams.shape)
+
+
 class PairDraws(NamedTuple):
     """Simulated deaths of two populations, each [draw, ..., age]."""
 

@@ -1,6 +1,7 @@
 """Numbers with their intervals: by the delta method, or by simulation where they are not smooth.
 
-An interval covers chance in deaths: deaths are Poisson, person-years are taken as known.
+An interval covers chance in deaths, which are Poisson; person-years are taken as known, or as known
+up to an error that the settings name.
 """
 
 from collections.abc import Sequence
@@ -11,7 +12,7 @@ from numpy.typing import NDArray
 
 from engine.ages import Array
 from engine.chain import Chain, run
-from engine.chance import Chance, chances, limits
+from engine.chance import Chance, chances, limits, told
 from engine.estimates import Estimate, Reason
 from engine.indicator import Indicator
 from engine.panel import Panel
@@ -42,35 +43,38 @@ def estimates(
 ) -> dict[str, Estimate]:
     """Each indicator of every population with its interval at the settings' level, by its key.
 
-    Smooth: from the variance sum w^2 D, w what one death more at each age moves, D the deaths; on
-    the scale that `Unit.limits` names. Not smooth: quantiles of the values of simulated tables, all
-    read off the same draws.
+    Smooth, and counts over births: from what one death more at each age moves (delta method), as
+    `engine.chance.limits` says. Not smooth: quantiles of the values of simulated tables, all read
+    off the same draws.
+
+    Where the settings name an error of the population, person-years are out at all ages together
+    by the same number of standard deviations: the prudent choice, since errors of their own at each
+    age would largely cancel. It moves a number as far as it moves with them, to which chance is
+    added.
 
     Shape:   panel [..., age], streams [...] (the code of each population) -> [...].
     Missing: a value that may not be read is nan, with its reason. A value may stand without an
              interval: not simulated for want of streams; lacking in more than 1 % of the simulated
-             tables; no deaths at all behind a smooth number that is no sum of counts.
+             tables. Without any deaths behind it a smooth number has limits, no standard error.
     Source:  Chiang (1984), The Life Table and Its Applications, chapter 8 (delta method);
-             Brillinger (1986), Biometrics 42 (Poisson deaths); Agresti (2013), Categorical Data
-             Analysis, chapter 3 (limits on the scale of log odds); Fay & Feuer (1997), Statistics
-             in Medicine 16 (gamma limits); Andreev & Shkolnikov (2010), MPIDR Technical Report
-             2010-005 (simulation).
+             Brillinger (1986), Biometrics 42 (Poisson deaths); Andreev & Shkolnikov (2010), MPIDR
+             Technical Report 2010-005 (simulation).
     """
     chain = run(panel, settings)
     found = {one.key: _bare(one, chain) for one in indicators}
     moved = chances(indicators, chain)
     for one in indicators:
-        if one.smooth:
+        if told(one):
             bare, chance = found[one.key], moved[one.key]
             low, high = limits(one.unit.limits, bare.value, chance, settings.level)
-            found[one.key] = bare.within(low, high, chance.se, Reason.NO_DEATHS)
+            found[one.key] = bare.within(low, high, chance.se, Reason.OFTEN_LOST)
     if streams is None:
         return found
     rows, names = flat(panel), np.asarray(streams).ravel()
 
     def draw(stepped: Sequence[Indicator], where: slice) -> dict[str, Array]:
         deaths = poisson_draws(rows.deaths[where], names[where], settings.draws, CHANCE)
-        return drawn(stepped, rows[where], deaths, settings)
+        return drawn(stepped, rows[where], deaths, settings, names[where])
 
     return found | simulated(indicators, found, draw, settings)
 
@@ -108,12 +112,16 @@ def differences(
 
     The limits follow from those of the two sides, so that they stay such as a difference can have:
     below the difference d by sqrt(a^2 + b^2 - 2 r a b), with a from this down to its lower limit, b
-    from that up to its upper one, and r the correlation; above it likewise. With even limits this
-    is d -+ z sqrt(var).
+    from that up to its upper one, and r the correlation; above it likewise. Where the limits of
+    both lie evenly this is d -+ z sqrt(var).
+
+    An error of the population is taken as each side's own, also in an area and its whole, or in two
+    years of one area: what they have in common would cancel.
 
     Shape:   panels of one shape on one grid, streams of this and of that [...].
     Missing: as in `estimates`, the reason of this before that of that. Without an interval also
-             where all deaths are counted in both and chance moves the two alike.
+             where all deaths are counted in both and chance moves the two alike; without a standard
+             error where either side has no deaths behind the number.
     Raises:  ValueError where the grids differ, or more deaths are shared than either has.
     Source:  Chiang (1984), The Life Table and Its Applications, chapter 8; covariance of sums;
              Zou & Donner (2008), Statistics in Medicine 27 (limits from those of both sides).
@@ -123,7 +131,7 @@ def differences(
     found = {one.key: _less(_bare(one, here), _bare(one, there)) for one in indicators}
     upper, lower = chances(indicators, here), chances(indicators, there)
     for one in indicators:
-        if one.smooth:
+        if told(one):
             found[one.key] = _apart(
                 found[one.key],
                 _Side.of(one, here, upper[one.key]),
@@ -167,14 +175,12 @@ def _apart(bare: Estimate, this: _Side, that: _Side, in_both: Array) -> Estimate
         shared = (this.chance.weights * that.chance.weights * in_both).sum(axis=-1)
         left = own + other - 2 * shared
         alike = (own + other > 0) & (left <= SAME * (own + other))
-        known = ~alike & (own > 0) & (other > 0)
-        together = np.where(known, shared / np.sqrt(own * other), 0.0)
-        down = _joint(this.below, that.above, together)
-        up = _joint(this.above, that.below, together)
-    low = np.where(alike, np.nan, bare.value - down)
-    se = np.sqrt(np.where(known, left, np.nan))
-    why = np.where(alike, Reason.NO_SAMPLING_INTERVAL, Reason.NO_DEATHS)
-    return bare.within(low, bare.value + up, se, why)
+        se = np.sqrt(this.chance.se**2 + that.chance.se**2 - 2 * shared)  # nan without deaths
+        together = np.nan_to_num(shared / (this.chance.se * that.chance.se))
+        low = bare.value - _joint(this.below, that.above, together)
+        high = bare.value + _joint(this.above, that.below, together)
+    why = np.where(alike, Reason.NO_SAMPLING_INTERVAL, Reason.OFTEN_LOST)
+    return bare.within(np.where(alike, np.nan, low), high, se, why)
 
 
 def _joint(a: Array, b: Array, correlation: Array) -> Array:
@@ -233,8 +239,8 @@ def _pair_draw(
             settings.draws,
             CHANCE,
         )
-        values = drawn(stepped, upper[where], deaths.this, settings)
-        others = drawn(stepped, lower[where], deaths.that, settings)
+        values = drawn(stepped, upper[where], deaths.this, settings, here[where])
+        others = drawn(stepped, lower[where], deaths.that, settings, there[where])
         return {key: values[key] - others[key] for key in values}
 
     return draw

@@ -42,7 +42,7 @@ def between(first: int, last: int) -> Indicator:
         key=f"{years}q{first}",
         symbol=f"{years}q{first}",
         label=f"Chance of dying {span}",
-        unit=Unit(f"per_1000_{per.replace(' ', '_')}", f"per 1,000 {per}", 1000, 1, limits="odds"),
+        unit=Unit(f"per_1000_{per.replace(' ', '_')}", f"per 1,000 {per}", 1000, 1, limits="part"),
         definition=(
             f"How many of a thousand {who} would die before they reach {last} if the death rates"
             " of the year held through those ages."
@@ -76,7 +76,7 @@ def survivors(age: int) -> Indicator:
         key=f"l{age}",
         symbol=f"l{age}",
         label=f"Survivors to {age}",
-        unit=Unit("per_100_births", "per 100 births", 100, 1, limits="odds"),
+        unit=Unit("per_100_births", "per 100 births", 100, 1, limits="part"),
         definition=(
             f"How many of a hundred children born would live to see {age} if the death rates of the"
             " year held through the ages before."
