@@ -63,5 +63,6 @@ class Estimate:
     @classmethod
     def bare(cls, value: Array, reason: NDArray[np.uint8], why: Reason) -> "Estimate":
         """Values where there is no reason against them, without an interval, and why without."""
-        value, gap = np.where(reason == Reason.NONE, value, np.nan), np.full(value.shape, np.nan)
-        return cls(value, gap, gap, reason, gap).within(gap, gap, gap, why)
+        stands = reason == Reason.NONE
+        value, gap = np.where(stands, value, np.nan), np.full(value.shape, np.nan)
+        return cls(value, gap, gap, np.where(stands, np.uint8(why), reason), gap)

@@ -23,14 +23,22 @@ def judge(needs: Needs, chain: Chain, value: Array) -> NDArray[np.uint8]:
 
     Where several hold, the one is given that must be mended first.
     """
+    return unless_found(against(needs, chain), needs, value)
+
+
+def against(needs: Needs, chain: Chain) -> NDArray[np.uint8]:
+    """The same before the value is looked at, for all numbers that need the same: [...]."""
+    found = np.zeros(chain.panel.batch_shape, np.uint8)
     with np.errstate(invalid="ignore"):
-        rules = (*_of_counts(needs, chain), *_of_ages(needs, chain))
-        rules += ((needs.otherwise, ~np.isfinite(value)),)
-    return np.select(
-        [np.broadcast_to(holds, value.shape) for _, holds in rules],
-        [np.uint8(reason) for reason, _ in rules],
-        np.uint8(Reason.NONE),
-    )
+        for reason, holds in (*_of_counts(needs, chain), *_of_ages(needs, chain)):
+            found = np.where((found == Reason.NONE) & holds, np.uint8(reason), found)
+    return found
+
+
+def unless_found(reason: NDArray[np.uint8], needs: Needs, value: Array) -> NDArray[np.uint8]:
+    """Where nothing is against a number and yet there is none, the reason that it has for that."""
+    none = (reason == Reason.NONE) & ~np.isfinite(value)
+    return np.where(none, np.uint8(needs.otherwise), reason)
 
 
 def _of_counts(needs: Needs, chain: Chain) -> Rules:

@@ -16,7 +16,7 @@ from engine.chance import Chance, chances, limits, told
 from engine.estimates import Estimate, Reason
 from engine.indicator import Indicator
 from engine.panel import Panel
-from engine.reasons import judge
+from engine.reasons import against, unless_found
 from engine.settings import Settings
 from engine.simulation import Draw, drawn, flat, simulated
 from engine.streams import pair_draws, poisson_draws
@@ -61,7 +61,7 @@ def estimates(
              Technical Report 2010-005 (simulation).
     """
     chain = run(panel, settings)
-    found = {one.key: _bare(one, chain) for one in indicators}
+    found = _bare(indicators, chain)
     moved = chances(indicators, chain)
     for one in indicators:
         if told(one):
@@ -128,14 +128,15 @@ def differences(
     """
     _require_comparable(this, that, shared)
     here, there = run(this, settings), run(that, settings)
-    found = {one.key: _less(_bare(one, here), _bare(one, there)) for one in indicators}
+    values, others = _bare(indicators, here), _bare(indicators, there)
+    found = {key: _less(values[key], others[key]) for key in values}
     upper, lower = chances(indicators, here), chances(indicators, there)
     for one in indicators:
         if told(one):
             found[one.key] = _apart(
                 found[one.key],
-                _Side.of(one, here, upper[one.key]),
-                _Side.of(one, there, lower[one.key]),
+                _Side.of(one, values[one.key], upper[one.key], settings),
+                _Side.of(one, others[one.key], lower[one.key], settings),
                 _in_both(one, shared, settings),
             )
     if streams is None:
@@ -161,11 +162,9 @@ class _Side:
     chance: Chance
 
     @classmethod
-    def of(cls, one: Indicator, chain: Chain, chance: Chance) -> "_Side":
-        with np.errstate(all="ignore"):
-            value = one.value(chain)
-        low, high = limits(one.unit.limits, value, chance, chain.settings.level)
-        return cls(value - low, high - value, chance)
+    def of(cls, one: Indicator, bare: Estimate, chance: Chance, settings: Settings) -> "_Side":
+        low, high = limits(one.unit.limits, bare.value, chance, settings.level)
+        return cls(bare.value - low, high - bare.value, chance)
 
 
 def _apart(bare: Estimate, this: _Side, that: _Side, in_both: Array) -> Estimate:
@@ -246,11 +245,16 @@ def _pair_draw(
     return draw
 
 
-def _bare(indicator: Indicator, chain: Chain) -> Estimate:
-    """The value where it may be read, without an interval."""
-    with np.errstate(all="ignore"):
-        value = indicator.value(chain)
-    return Estimate.bare(value, judge(indicator.needs, chain, value), Reason.NOT_SIMULATED)
+def _bare(indicators: Sequence[Indicator], chain: Chain) -> dict[str, Estimate]:
+    """The values where they may be read, without an interval."""
+    reasons = {needs: against(needs, chain) for needs in {one.needs for one in indicators}}
+    found = {}
+    for one in indicators:
+        with np.errstate(all="ignore"):
+            value = one.value(chain)
+        reason = unless_found(reasons[one.needs], one.needs, value)
+        found[one.key] = Estimate.bare(value, reason, Reason.NOT_SIMULATED)
+    return found
 
 
 def _less(this: Estimate, that: Estimate) -> Estimate:
