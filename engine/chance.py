@@ -133,7 +133,9 @@ KINDS: dict[Limits, Kind] = {
 }
 
 
-def limits(kind: Limits, value: Array, chance: Chance, level: float) -> Interval:
+def limits(
+    kind: Limits, value: Array, chance: Chance, level: float, *, apart: bool = False
+) -> Interval:
     """Limits of a number from the gamma laws of the deaths behind it.
 
     To first order a number is a constant, and a weighted sum of the deaths that raise it, less one
@@ -144,7 +146,8 @@ def limits(kind: Limits, value: Array, chance: Chance, level: float) -> Interval
     For rates, counts and parts of a whole the upper ends allow for one death more where it weighs
     most, so that the truth is never missed too often; for other numbers for half of one, as mid-p
     limits do, which comes nearest to the level (tests/studies/coverage.md). Persons counted wrongly
-    widen both sides, as one more part that is independent of the deaths.
+    widen both sides, as one more part that is independent of the deaths. Of two numbers `apart`,
+    the value is their difference, which may have any sign.
 
     Shape:   value [...], chance [..., count] -> [...] each.
     Source:  Fay & Feuer (1997), Statistics in Medicine 16, 791-801 (gamma limits); Fay & Kim
@@ -160,6 +163,8 @@ def limits(kind: Limits, value: Array, chance: Chance, level: float) -> Interval
         astray = float(ndtri((1 + level) / 2)) * chance.astray
         low = value - np.sqrt(raised.low**2 + lowered.high**2 + astray**2)
         high = value + np.sqrt(raised.high**2 + lowered.low**2 + astray**2)
+    if apart:
+        return Interval(low, high)
     return Interval(np.clip(low, own.least, own.most), np.clip(high, own.least, own.most))
 
 

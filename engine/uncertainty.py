@@ -5,7 +5,7 @@ up to an error that the settings name.
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -14,7 +14,7 @@ from engine.ages import Array
 from engine.chain import Chain, run
 from engine.chance import Chance, chances, limits, told
 from engine.estimates import Estimate, Reason
-from engine.indicator import Indicator
+from engine.indicator import Indicator, Limits
 from engine.panel import Panel
 from engine.reasons import against, unless_found
 from engine.settings import Settings
@@ -106,14 +106,10 @@ def differences(
     """Each indicator of this minus that, with the interval of the difference, by its key.
 
     Counts that stand in both (an area and the whole it belongs to, one sex and both), `shared`,
-    move the two together: var = sum g^2 D + sum h^2 D' - 2 sum g h S, where g and h are what one
-    death more moves this and that by, and S those shared. A simulation draws the shared deaths,
-    those of this only and those of that only apart, from streams of their own.
-
-    The limits follow from those of the two sides, so that they stay such as a difference can have:
-    below the difference d by sqrt(a^2 + b^2 - 2 r a b), with a from this down to its lower limit, b
-    from that up to its upper one, and r the correlation; above it likewise. Where the limits of
-    both lie evenly this is d -+ z sqrt(var).
+    move the two together: one death more moves the difference by g where it is of this alone, by -h
+    where of that alone, by g - h where of both, g and h being what it moves either by. The limits
+    follow as those of one number do. A simulation draws the shared deaths, those of this only and
+    those of that only apart, from streams of their own.
 
     An error of the population is taken as each side's own, also in an area and its whole, or in two
     years of one area: what they have in common would cancel.
@@ -123,8 +119,7 @@ def differences(
              where all deaths are counted in both and chance moves the two alike; without a standard
              error where either side has no deaths behind the number.
     Raises:  ValueError where the grids differ, or more deaths are shared than either has.
-    Source:  Chiang (1984), The Life Table and Its Applications, chapter 8; covariance of sums;
-             Zou & Donner (2008), Statistics in Medicine 27 (limits from those of both sides).
+    Source:  as in `estimates`.
     """
     _require_comparable(this, that, shared)
     here, there = run(this, settings), run(that, settings)
@@ -135,9 +130,11 @@ def differences(
         if told(one):
             found[one.key] = _apart(
                 found[one.key],
-                _Side.of(one, values[one.key], upper[one.key], settings),
-                _Side.of(one, others[one.key], lower[one.key], settings),
+                one.unit.limits,
+                upper[one.key],
+                lower[one.key],
                 _in_both(one, shared, settings),
+                settings.level,
             )
     if streams is None:
         return found
@@ -153,37 +150,23 @@ def differences(
     }
 
 
-@dataclass(frozen=True, slots=True)
-class _Side:
-    """A smooth number of one of two populations: how far it is to its limits, and what moves it."""
-
-    below: Array
-    above: Array
-    chance: Chance
-
-    @classmethod
-    def of(cls, one: Indicator, bare: Estimate, chance: Chance, settings: Settings) -> "_Side":
-        low, high = limits(one.unit.limits, bare.value, chance, settings.level)
-        return cls(bare.value - low, high - bare.value, chance)
-
-
-def _apart(bare: Estimate, this: _Side, that: _Side, in_both: Array) -> Estimate:
-    """The limits of a difference from those of its sides."""
-    with np.errstate(all="ignore"):
-        own, other = this.chance.variance, that.chance.variance
-        shared = (this.chance.weights * that.chance.weights * in_both).sum(axis=-1)
-        left = own + other - 2 * shared
-        alike = (own + other > 0) & (left <= SAME * (own + other))
-        se = np.sqrt(this.chance.se**2 + that.chance.se**2 - 2 * shared)  # nan without deaths
-        together = np.nan_to_num(shared / (this.chance.se * that.chance.se))
-        low = bare.value - _joint(this.below, that.above, together)
-        high = bare.value + _joint(this.above, that.below, together)
+def _apart(
+    bare: Estimate, kind: Limits, this: Chance, that: Chance, in_both: Array, level: float
+) -> Estimate:
+    """A difference with its limits: counts of this alone, of that alone and of both are apart."""
+    own, other = this.variance, that.variance
+    shared = np.broadcast_to(in_both, this.counts.shape)
+    alone = [np.maximum(side.counts - shared, 0.0) for side in (this, that)]
+    chance = Chance(
+        np.concatenate([this.weights, -that.weights, this.weights - that.weights], axis=-1),
+        np.concatenate([*alone, shared], axis=-1),
+        np.hypot(this.astray, that.astray),
+    )
+    alike = (own + other > 0) & (chance.variance <= SAME * (own + other))
+    low, high = limits(kind, bare.value, chance, level, apart=True)
+    se = np.where((own > 0) & (other > 0), chance.se, np.nan)
     why = np.where(alike, Reason.NO_SAMPLING_INTERVAL, Reason.OFTEN_LOST)
     return bare.within(np.where(alike, np.nan, low), high, se, why)
-
-
-def _joint(a: Array, b: Array, correlation: Array) -> Array:
-    return np.asarray(np.sqrt(np.maximum(a**2 + b**2 - 2 * correlation * a * b, 0.0)))
 
 
 def _in_both(one: Indicator, shared: Panel | None, settings: Settings) -> Array:
