@@ -1,7 +1,7 @@
 """What the ages, and the causes of death, contribute to a difference between two populations."""
 
 from engine.decomposition.closed import arriaga, pollard
-from engine.decomposition.limits import Limits, contribution_limits
+from engine.decomposition.limits import contribution_limits
 from engine.decomposition.line import (
     CauseContributions,
     Contributions,
@@ -10,6 +10,7 @@ from engine.decomposition.line import (
 )
 from engine.decomposition.path import Path, along
 from engine.decomposition.rates import RateParts, kitagawa, of_crude_rates
+from engine.decomposition.simulated import Limits
 from engine.decomposition.stepwise import NOT_DECOMPOSED, Stepwise, stepwise
 from engine.decomposition.unevenness import UnevennessParts, unevenness_parts
 

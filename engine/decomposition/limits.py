@@ -1,34 +1,29 @@
-"""Limits within which chance in deaths leaves each age's contribution."""
+"""Limits within which chance in deaths leaves each age's contribution, and each cause's."""
 
-from collections.abc import Sequence
 from dataclasses import replace
 from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.special import ndtr, ndtri
 
 from engine.ages import AgeGrid, Array
-from engine.blocks import blocks
-from engine.chain import Chain, run
+from engine.chain import Chain, Reading
+from engine.chance import Chance, limits, miscount
 from engine.decomposition.bends import bends
-from engine.decomposition.line import cause_steps, cells
-from engine.decomposition.stepwise import of_values, passed_through, stepwise
+from engine.decomposition.line import cause_steps, cells, contributions, contributions_by_cause
+from engine.decomposition.simulated import Limits, stepwise_limits
 from engine.decomposition.straight import Line
 from engine.indicator import Indicator
 from engine.panel import Panel
 from engine.settings import Settings
-from engine.streams import PairDraws, pair_draws
+from engine.streams import pair_draws
 
-ROUNDING = 1e-7  # of the widest: what is left of a limit at an age that the number does not read
-LOST = 0.01  # share of the draws that may lack a figure
+ROUNDING = (
+    1e-7  # of the widest: what is left of an interval at an age that the number does not read
+)
 
 Codes = NDArray[np.str_]
-
-
-class Limits(NamedTuple):
-    low: Array
-    high: Array
+Pair = tuple[Array, Array]  # of this and of that
 
 
 def contribution_limits(
@@ -41,101 +36,154 @@ def contribution_limits(
     shared: Array | None = None,
     draws: int = 200,
     groups: AgeGrid | None = None,
-    causes: tuple[Array, Array] | None = None,
+    causes: Pair | None = None,
 ) -> Limits:
     """Limits of the contributions along the straight line, or of the stepwise ones where the
     indicator is not smooth, at the settings' level.
 
     Deaths of both populations are Poisson, those counted in both (`shared`) move the two together;
-    person-years and the infants' mix are taken as known. Smooth: contribution -+ z times its
-    standard error by the delta method, for which the contribution of each age is derived in both
-    columns of rates. Not smooth: the stepwise contributions of populations drawn anew, by keyed
-    simulation, with bias-corrected percentile limits; for these `streams` are needed. With
-    `groups`, a coarser grid, they are limits of the sums over its groups; with `causes`, the deaths
-    of this and of that by cause, those of the contributions by cause (smooth only), deaths of
-    different causes moving by chance of their own.
+    person-years and the infants' mix are taken as known, but for the settings' error of the
+    population. Smooth: from what one death more on either side moves a contribution by, as limits
+    of the indicator itself are (`engine.chance.limits`). Not smooth: bias-corrected percentiles of
+    the contributions of populations drawn anew, for which `streams` are needed. With `groups`, a
+    coarser grid, they are limits of the sums over its groups; with `causes`, the deaths of this and
+    of that by cause, those of the contributions by cause (smooth only).
 
     Shape:   panels of one shape, shared [..., age], streams of this and of that [...]
              -> low, high [..., age], or [..., group]; of causes and what is shared of them
              [..., cause, age] -> [..., cause, age], or [..., cause, group].
-    Missing: nan where the contribution is, where neither population has a death that moves it, and
-             where more than 1 % of the draws give no figure.
+    Missing: nan where the contribution is, at ages that the number does not read, and where more
+             than 1 % of the draws give no figure.
     Raises:  as `contributions` and `poisson_draws`; ValueError where streams are needed and not
              given.
-    Source:  Chiang (1984), The Life Table and Its Applications, chapter 8 (delta method); Efron
-             (1987), Journal of the American Statistical Association 82, 171-185 (bias-corrected
-             percentiles).
+    Source:  Chiang (1984), The Life Table and Its Applications, chapter 8 (delta method), and those
+             of `engine.chance.limits`; Efron (1987), Journal of the American Statistical
+             Association 82, 171-185 (bias-corrected percentiles).
     """
     groups = groups or this.grid
     if causes is not None:
-        in_both = np.zeros_like(causes[0]) if shared is None else shared
-        steps = cause_steps(this, that, causes)
-        return _delta(indicator, this, that, settings, steps, (*causes, in_both), groups)
-    in_both = np.zeros_like(this.deaths) if shared is None else shared
+        return _smooth_limits(indicator, this, that, settings, causes, shared, groups)
     if indicator.smooth:
-        one_cause = [deaths[..., None, :] for deaths in (this.deaths, that.deaths, in_both)]
-        found = _delta(indicator, this, that, settings, None, one_cause, groups)
+        both = None if shared is None else shared[..., None, :]
+        found = _smooth_limits(indicator, this, that, settings, None, both, groups)
         return Limits(*(end[..., 0, :] for end in found))
     if streams is None:
         raise ValueError(
             f"contributions to {indicator.label} are simulated, and no streams were given"
         )
+    in_both = np.zeros_like(this.deaths) if shared is None else shared
     drawn = pair_draws(this.deaths, that.deaths, in_both, streams, draws, "contributions")
-    return _simulated(indicator, this, that, settings, drawn, groups)
+    return stepwise_limits(indicator, this, that, settings, drawn, groups)
 
 
-def _delta(
+def _smooth_limits(
     indicator: Indicator,
     this: Panel,
     that: Panel,
     settings: Settings,
-    steps: Array | None,
-    deaths: Sequence[Array],
+    causes: Pair | None,
+    shared: Array | None,
     groups: AgeGrid,
 ) -> Limits:
-    """With s the mean slope on the line and B its derivative in one side's rates, what a cause
-    contributes, d s for a change d of its rate, moves by s with its own rate at the age, and by d B
-    with the rates of all causes at every age.
-
-    `deaths` of this, of that and of both are [..., cause, age]; without `steps`, the changes of the
-    causes' rates, there is one cause, and its rates are those of the line.
-    """
-    line = Line.between(that, this, settings, indicator)
-    steps = line.step[..., None, :] if steps is None else steps
+    """[..., cause, group]; without causes there is one, with the rates that the number rests on."""
+    grid, line = this.grid, Line.between(that, this, settings, indicator)
+    if causes is None:
+        counts = this.deaths[..., None, :], that.deaths[..., None, :]
+        steps = line.step[..., None, :]
+    else:
+        counts, steps = causes, cause_steps(this, that, causes)
+    both = np.zeros_like(counts[0]) if shared is None else shared
     with np.errstate(all="ignore"):
         mean = line.mean_slope(indicator)
-        own = np.moveaxis(mean[..., None] * np.eye(len(this.grid)), -1, 0)
-        moves = [
-            _Moves(
-                _per_death(this.grid.regroup(sign * own, groups), chain)[:, None],
-                _per_death(this.grid.regroup(bend[:, None] * _first(steps), groups), chain),
-            )
-            for sign, bend, chain in zip(
-                (1, -1), bends(indicator, line, mean), (line.end, line.start), strict=True
-            )
-        ]
-        ours, theirs, both = (_first(counts) for counts in deaths)
-        variance = _together(moves[0], moves[0], ours) + _together(moves[1], moves[1], theirs)
-        variance += 2 * _together(moves[0], moves[1], both)
-        half = ndtri((1 + settings.level) / 2) * np.sqrt(np.moveaxis(variance, (0, 1), (-1, -2)))
-        widest = half.max(axis=(-2, -1), keepdims=True)
-        half = np.where(half > ROUNDING * widest, half, np.nan)
-    value = this.grid.regroup(cells(mean, steps, line.difference(indicator)), groups)
-    return Limits(value - half, value + half)
+        moves = _moves(indicator, line, mean, steps, groups)
+        value = grid.regroup(cells(mean, steps, line.difference(indicator)), groups)
+        chance = _chance(*moves, *(_first(deaths) for deaths in (*counts, both)))
+        astray = _astray(indicator, this, that, settings, causes, groups)
+        chance = replace(chance, astray=chance.astray + _ahead(astray))
+        ends = limits("mixed", _ahead(value), chance, settings.level)
+    low, high = (np.moveaxis(end, (0, 1), (-1, -2)) for end in ends)
+    widest = np.nanmax(high - low, axis=(-2, -1), keepdims=True, initial=0.0)
+    read = high - low > ROUNDING * widest
+    return Limits(np.where(read, low, np.nan), np.where(read, high, np.nan))
 
 
 class _Moves(NamedTuple):
-    """What one death more at an age moves the contributions of a cause by, [group, cause, ..., age
-    of the death]."""
+    """What one death more at an age of one side moves the contributions of a cause by, [group,
+    cause, ..., age of the death]."""
 
     own: Array  # a death of that cause, through its own rate
     all: Array  # a death of any cause, through the slopes
 
 
-def _together(one: _Moves, other: _Moves, deaths: Array) -> Array:
-    """The covariance that deaths [cause, ..., age] in both give them, [group, cause, ...]."""
-    by_own = one.own * other.own + one.own * other.all + one.all * other.own
-    return np.asarray((by_own * deaths + one.all * other.all * deaths.sum(axis=0)).sum(axis=-1))
+def _moves(
+    indicator: Reading, line: Line, mean: Array, steps: Array, groups: AgeGrid
+) -> tuple[_Moves, _Moves]:
+    """Of this and of that. With s the mean slope on the line and B its derivative in one side's
+    rates, what a cause contributes, d s for a change d of its rate, moves by s with its own rate at
+    the age, and by d B with the rates of all causes at every age."""
+    grid = line.start.panel.grid
+    own = np.moveaxis(mean[..., None] * np.eye(len(grid)), -1, 0)  # [moved, ..., age]
+    by_end, by_start = bends(indicator, line, mean)
+
+    def side(sign: int, bend: Array, chain: Chain) -> _Moves:
+        through = grid.regroup(bend[:, None] * _first(steps), groups)
+        alone = grid.regroup(sign * own, groups)[:, None]
+        return _Moves(*(_per_death(by_rate, chain) for by_rate in (alone, through)))
+
+    return side(1, by_end, line.end), side(-1, by_start, line.start)
+
+
+def _per_death(by_rate: Array, chain: Chain) -> Array:
+    """[age moved, cause, ..., group] in raw rates -> [group, cause, ..., age moved] in deaths."""
+    turned = np.ascontiguousarray(np.swapaxes(by_rate, 0, -1))
+    return chain.rates.per_death(chain.rates.pull(turned))
+
+
+def _chance(this: _Moves, that: _Moves, ours: Array, theirs: Array, both: Array) -> Chance:
+    """Deaths [cause, ..., age] of this only, of that only and of both, each of the cause itself and
+    of all others, with what one of them moves the cause's contributions by."""
+    alike = _Moves(this.own + that.own, this.all + that.all)
+    weights, counts = [], []
+    for moved, deaths in ((this, ours - both), (that, theirs - both), (alike, both)):
+        weights += [moved.own + moved.all, moved.all]
+        counts += [deaths, deaths.sum(axis=0) - deaths]
+    shape = weights[0].shape
+    return Chance(
+        np.concatenate(weights, axis=-1),
+        np.concatenate([np.broadcast_to(np.maximum(one, 0.0), shape) for one in counts], axis=-1),
+        np.zeros(shape[:-1]),
+    )
+
+
+def _astray(
+    indicator: Indicator,
+    this: Panel,
+    that: Panel,
+    settings: Settings,
+    causes: Pair | None,
+    groups: AgeGrid,
+) -> Array:
+    """Standard deviation owed to persons counted wrongly, on each side for itself: half of what a
+    contribution moves by from one standard deviation too few to one too many, at all ages alike.
+    [..., cause, group]"""
+    error = miscount(this.grid, settings)
+    if not error.any():
+        return np.zeros((*this.batch_shape, 1, 1))
+
+    def value(ours: Array, theirs: Array) -> Array:
+        upper = replace(this, exposure=this.exposure * (1 + ours))
+        lower = replace(that, exposure=that.exposure * (1 + theirs))
+        if causes is None:
+            by_cause = contributions(indicator, upper, lower, settings).by_age[..., None, :]
+        else:
+            found = contributions_by_cause(indicator, upper, lower, settings, causes=causes)
+            by_cause = found.by_cause
+        return this.grid.regroup(by_cause, groups)
+
+    none = np.zeros_like(error)
+    by_this = value(-error, none) - value(error, none)
+    by_that = value(none, -error) - value(none, error)
+    return np.asarray(np.hypot(by_this, by_that) / 2)
 
 
 def _first(by_cause: Array) -> Array:
@@ -143,55 +191,6 @@ def _first(by_cause: Array) -> Array:
     return np.ascontiguousarray(np.moveaxis(by_cause, -2, 0))
 
 
-def _per_death(by_rate: Array, chain: Chain) -> Array:
-    """[age moved, ..., group] in raw rates -> [group, ..., age moved] in deaths."""
-    turned = np.ascontiguousarray(np.swapaxes(by_rate, 0, -1))
-    return chain.rates.per_death(chain.rates.pull(turned))
-
-
-def _simulated(
-    indicator: Indicator,
-    this: Panel,
-    that: Panel,
-    settings: Settings,
-    drawn: PairDraws,
-    groups: AgeGrid,
-) -> Limits:
-    """The stepwise contributions of drawn populations; choices made on the observed ones hold."""
-    ours, theirs = (panel.over(lambda array: array[None]) for panel in (this, that))
-    observed, found = run(passed_through(ours, theirs), settings), []
-    for some in blocks(len(drawn.this), observed.rates.mx.size // len(this.grid)):
-        these = replace(ours, deaths=drawn.this[some]), replace(theirs, deaths=drawn.that[some])
-        with np.errstate(all="ignore"):
-            passed = run(passed_through(*these), settings)
-            found.append(of_values(indicator.drawn(observed, passed)).by_age)
-    value = stepwise(indicator, this, that, settings).by_age
-    redrawn = this.grid.regroup(np.concatenate(found), groups)
-    return corrected(redrawn, this.grid.regroup(value, groups), settings.level)
-
-
-def corrected(draws: Array, value: Array, level: float) -> Limits:
-    """Bias-corrected percentile limits: with z0 the normal quantile of the share of draws below the
-    value (those equal to it by half), the percentiles taken are those of Phi(2 z0 -+ z).
-
-    Shape:   draws [draw, ...], value [...] -> [...].
-    Missing: nan where more than 1 % of the draws are nan, where the value is, and where chance
-             moves nothing.
-    Source:  Efron (1987), Journal of the American Statistical Association 82, 171-185, section 2.
-    """
-    ordered = np.sort(draws, axis=0)  # nan last
-    known = np.sum(~np.isnan(draws), axis=0)
-    with np.errstate(all="ignore"):
-        below = ((draws < value).sum(axis=0) + (draws == value).sum(axis=0) / 2) / known
-        # a value beyond every draw is as far out as one draw more could tell
-        centre = ndtri(np.clip(below, 1 / (known + 1), known / (known + 1)))
-        ends = []
-        for side in (-1, 1):
-            tail = ndtr(2 * centre + side * ndtri((1 + level) / 2))
-            place = np.clip(tail * (known + 1) - 1, 0, np.maximum(known - 1, 0))
-            low = np.floor(np.nan_to_num(place)).astype(int)
-            high = np.minimum(low + 1, np.maximum(known - 1, 0))
-            one, next_one = (np.take_along_axis(ordered, at[None], axis=0)[0] for at in (low, high))
-            ends.append(one + (place - low) * (next_one - one))
-        held = (known >= (1 - LOST) * len(draws)) & np.isfinite(value) & (ends[0] < ends[1])
-    return Limits(*(np.where(held, end, np.nan) for end in ends))
+def _ahead(by_cause: Array) -> Array:
+    """[..., cause, group] -> [group, cause, ...]"""
+    return np.moveaxis(by_cause, (-1, -2), (0, 1))

@@ -74,13 +74,21 @@ def test_elsewhere_it_errs(name: str, least: float, capsys: pytest.CaptureFixtur
     assert right[x] - cut[x] > least * right[x]
 
 
+def of_a_whole(**law: float) -> Panel:
+    """With births, and the whole that some numbers compare with."""
+    panel = gompertz_panel(**law)
+    births = np.array([14_000.0, 60.0, 20.0])
+    return replace(panel, births=births, whole=gompertz_panel(people=1e7, level=3e-5))
+
+
 def partials(one: Indicator) -> object:
-    return one.partials(run(gompertz_panel(), find("almanac-1")))
+    return one.partials(run(of_a_whole(), find("almanac-1")))
 
 
 SMOOTH = [one for one in INDICATORS.values() if one.smooth]
 OF_TABLE = [one for one in SMOOTH if isinstance(partials(one), Partials)]
-OF_RATES = [one for one in SMOOTH if not isinstance(partials(one), Partials | Tally)]
+BY_AGE = [one for one in SMOOTH if not isinstance(partials(one), Tally)]
+OF_RATES = [one for one in BY_AGE if one not in OF_TABLE]
 every_of_table = pytest.mark.parametrize("one", OF_TABLE, ids=lambda one: one.key)
 every_chain = pytest.mark.parametrize("settings", SETTINGS.values(), ids=SETTINGS)
 
@@ -134,7 +142,7 @@ def test_elasticities_of_life_expectancy_sum_to_minus_h(grid: AgeGrid, settings:
 @pytest.mark.fast
 @pytest.mark.parametrize("one", OF_RATES, ids=lambda one: one.key)
 def test_elasticity_of_what_is_read_off_rates(one: Indicator) -> None:
-    panel = gompertz_panel(infant=0.02, people=5e6)
+    panel = of_a_whole(infant=0.02, people=5e6)
     chain = run(panel, find("almanac-1"))
 
     def log_value(logs: np.ndarray) -> np.ndarray:
@@ -207,12 +215,11 @@ def without(panel: Panel, x: int, avoided: float) -> Panel:
 
 
 @pytest.mark.fast
-@pytest.mark.parametrize("one", SMOOTH, ids=lambda one: one.key)
+@pytest.mark.parametrize("one", BY_AGE, ids=lambda one: one.key)
 @pytest.mark.parametrize("key", ["almanac-1", "almanac-1-gompertz"])
 def test_so_many_deaths_fewer_bring_the_gain(one: Indicator, key: str) -> None:
     """Taken off the counts, at one age after another, and the whole chain run anew."""
-    settings, panel = find(key), gompertz_panel(people=1e6, infant=0.02, seed=1)
-    panel = replace(panel, births=np.array([14_000.0, 60.0, 200.0]))
+    settings, panel = find(key), of_a_whole(people=1e6, infant=0.02, seed=1)
     chain = run(panel, settings)
     before = one.value(chain)
     most = np.nan_to_num(sensitivity.deaths_to_avoid(one, chain, 1e-3).most)
@@ -242,6 +249,17 @@ def test_a_month_of_life_is_out_of_reach_where_few_die() -> None:
     short = np.isnan(found.deaths)
     assert (found.most[short] < 1 / 12).all()
     assert np.isnan(found.most[-1])  # the fewer die in the open group, the longer, without end
+
+
+@pytest.mark.fast
+def test_infant_deaths_over_births_are_avoided_in_the_first_year() -> None:
+    panel = of_a_whole(people=1e6, infant=0.02)
+    chain = run(panel, find("almanac-1"))
+    found = sensitivity.deaths_to_avoid(indicator("imr"), chain, -0.001)
+    assert found.deaths[0] == pytest.approx(0.001 * 14_000)
+    assert np.isnan(found.deaths[1:]).all()
+    with pytest.raises(ValueError, match="a count over births"):
+        sensitivity.elasticity(indicator("imr"), chain)
 
 
 @pytest.mark.fast

@@ -20,6 +20,15 @@ class Pair:
     this: Panel
     that: Panel
 
+    @classmethod
+    def beside_others(cls, this: Panel, that: Panel) -> "Pair":
+        """With a whole that both are part of, people to standardise by, and births."""
+        whole = gompertz_panel(this.grid, people=1e7, level=3e-5)
+        births = np.array([12_000.0, 50.0, 30.0])
+        return cls(
+            *(replace(one, whole=whole, standard=whole, births=births) for one in (this, that))
+        )
+
     def same_years(self, settings: Settings = PLAIN) -> "Pair":
         """That with the person-years of this, so that rates are all that differs."""
         rates = run(self.that, settings).rates.mx
@@ -60,12 +69,15 @@ def far_apart() -> Pair:
 
 
 PAIRS = {
-    "Danish men 1974 to 2012": danes(),
-    "men across the break of a0": crossing("m", (0.008, 0.045), (1, 1)),
-    "women across all breaks, upwards": crossing("f", (0.13, 0.005), (1, 1)),
-    "a group without deaths": zero_cell(),
-    "far apart": far_apart(),
-    "persons across a break, mix changing": crossing("p", (0.006, 0.019), (0.9, 1.08)),
+    name: Pair.beside_others(pair.this, pair.that)
+    for name, pair in {
+        "Danish men 1974 to 2012": danes(),
+        "men across the break of a0": crossing("m", (0.008, 0.045), (1, 1)),
+        "women across all breaks, upwards": crossing("f", (0.13, 0.005), (1, 1)),
+        "a group without deaths": zero_cell(),
+        "far apart": far_apart(),
+        "persons across a break, mix changing": crossing("p", (0.006, 0.019), (0.9, 1.08)),
+    }.items()
 }
 ONE_SEX = {name: pair for name, pair in PAIRS.items() if "persons" not in name}
 

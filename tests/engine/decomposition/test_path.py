@@ -1,5 +1,7 @@
 """Contributions along the path of all years between two."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
@@ -19,7 +21,10 @@ SMOOTH = [
 
 
 def danes(sex: str = "male") -> Panel:
-    return denmark.panel(sex).regroup(denmark.ABRIDGED)
+    """With a whole and people to standardise by, the same in all years."""
+    years = denmark.panel(sex).regroup(denmark.ABRIDGED)
+    whole = years[np.zeros(len(denmark.YEARS), int)]
+    return replace(years, whole=whole, standard=whole)
 
 
 def line_of(panel: Panel, other: Panel, steps: int) -> Panel:

@@ -33,7 +33,7 @@ def test_both_parts_add_up_and_change_their_sign_turned_round(m, w) -> None:
 def test_with_common_weights_all_is_owed_to_rates(m, w) -> None:
     parts = kitagawa((m[0], m[1]), (w[0], w[0]))
     np.testing.assert_array_equal(parts.composition, 0)
-    np.testing.assert_allclose(parts.rate, w[0] * (m[0] - m[1]), rtol=1e-12)
+    np.testing.assert_allclose(parts.rate, w[0] * (m[0] - m[1]), rtol=1e-12, atol=1e-300)
 
 
 @pytest.mark.fast

@@ -26,7 +26,8 @@ def between(pair: Pair, t: np.ndarray) -> Panel:
         name: getattr(pair.that, name) + t * (getattr(pair.this, name) - getattr(pair.that, name))
         for name in ("exposure", "infant_weight", "infant_ratio")
     }
-    return replace(pair.this, deaths=line["exposure"] * 0, **line)
+    bare = replace(pair.this, whole=None, standard=None)
+    return replace(bare, deaths=line["exposure"] * 0, **line)
 
 
 def step_sums(pair: Pair, settings: Settings, steps: int, *readings: Reading) -> list[np.ndarray]:
