@@ -464,4 +464,9 @@ def test_an_age_without_person_years_is_left_out(law: Law) -> None:
         with_it.parameters, fitted(law, np.stack([empty, years])).parameters
     )
     assert with_it.residuals[12] == 0
+    moved = with_it.per_death(np.ones(len(law.names)))
+    assert moved[12] == 0
+    np.testing.assert_allclose(
+        moved * years, with_it.pull_parameters(np.ones(len(law.names))), rtol=1e-12
+    )
     assert with_it.converged
