@@ -2,6 +2,7 @@
 
 import datetime as dt
 from collections.abc import Collection, Iterable, Mapping
+from dataclasses import replace
 
 import numpy as np
 from hypothesis import strategies as st
@@ -25,7 +26,7 @@ GRIDS = {
     "abridged": AgeGrid((0, 1, *range(5, 101, 5))),
     "single": AgeGrid(tuple(range(101))),
     "irregular": AgeGrid(
-        (0, 1, 3, 5, 10, 12, 15, 25, 30, 40, 45, 50, 60, 65, 70, 74, 80, 83, 85, 90, 95, 100)
+        (0, 1, 3, 5, 10, 12, 15, 25, 30, 40, 45, 50, 60, 65, 70, 75, 80, 83, 85, 90, 95, 100)
     ),
 }
 
@@ -78,6 +79,17 @@ def persons_panel(grid: AgeGrid = GRIDS["abridged"], *, seed: int | None = None)
     return Panel.persons(women, men)
 
 
+def complete(panel: Panel) -> Panel:
+    """The same populations with births, and with a whole and a standard of other ages and rates
+    beside them, so that every indicator can be read."""
+    live = np.ceil(panel.exposure[..., 0] + 50)
+    neonatal = np.floor(0.6 * panel.deaths[..., 0])
+    older = np.linspace(1.0, 1.5, len(panel.grid))
+    whole = replace(panel, deaths=4 * panel.deaths + 1, exposure=4.1 * older * panel.exposure)
+    births = np.stack([live, np.ceil(live / 200), neonatal], axis=-1)
+    return replace(panel, births=births, whole=whole, standard=whole)
+
+
 def codes(panel: Panel, name: str = "isle") -> NDArray[np.str_]:
     """A code for each population of a batch."""
     numbers = np.arange(int(np.prod(panel.batch_shape))).reshape(panel.batch_shape)
@@ -89,14 +101,16 @@ def panels(draw: st.DrawFn, batch: int = 4) -> Panel:
     """A batch of drawn populations on one of the grids, small or large, short-lived or long."""
     shares = st.lists(st.floats(0, 1), min_size=batch, max_size=batch).map(np.array)
     slope = 0.08 + 0.04 * draw(shares)
-    return gompertz_panel(
-        draw(st.sampled_from(list(GRIDS.values()))),
-        people=draw(st.floats(30_000, 3_000_000)),
-        sex=draw(st.sampled_from(("f", "m", "p"))),
-        seed=draw(st.integers(0, 2**31)),
-        slope=slope,
-        level=0.1 / np.exp(86 * slope),
-        infant=0.002 + 0.15 * draw(shares),
+    return complete(
+        gompertz_panel(
+            draw(st.sampled_from(list(GRIDS.values()))),
+            people=draw(st.floats(30_000, 3_000_000)),
+            sex=draw(st.sampled_from(("f", "m", "p"))),
+            seed=draw(st.integers(0, 2**31)),
+            slope=slope,
+            level=0.1 / np.exp(86 * slope),
+            infant=0.002 + 0.15 * draw(shares),
+        )
     )
 
 

@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from engine.indicator import Indicator, Needs, Unit
 from engine.indicators import (
     ageing,
+    births,
     deviation,
     expectancy,
     inequality,
@@ -16,6 +17,9 @@ from engine.indicators import (
     modes,
     probabilities,
     quantiles,
+    rates,
+    standardised,
+    years_of_life_lost,
 )
 from engine.uncertainty import difference, differences, estimate, estimates
 
@@ -42,8 +46,17 @@ FAMILIES = (
     deviation,
     inequality,
     ageing,
+    rates,
+    standardised,
+    years_of_life_lost,
+    births,
 )
-PATTERNS = (*expectancy.PATTERNS, *probabilities.PATTERNS)
+PATTERNS = (
+    *expectancy.PATTERNS,
+    *probabilities.PATTERNS,
+    *years_of_life_lost.PATTERNS,
+    *standardised.PATTERNS,
+)
 _ENTRIES = {one.key: one for family in FAMILIES for one in family.FAMILY}
 
 
@@ -81,21 +94,29 @@ GROUPS = (
         "How even is length of life, whatever its average?",
         "H gini cv theil mld threshold_edagger threshold_H ageing_rate",
     ),
-    _group("rates", "Death rates", "How many people die, for the people there are?", ""),
-    _group("young", "Young lives", "How many children die?", "5q0"),
+    _group(
+        "rates",
+        "Death rates",
+        "How many people die, for the people there are?",
+        "cdr asr_esp2013 asr_esp1976 asr_who2000 asr_segi asr_us2000 smr isr yll75 yll_ref",
+    ),
+    _group("young", "Young lives", "How many children die?", "5q0 imr nmr pnmr sbr"),
 )
 INDICATORS: dict[str, Indicator] = {one.key: one for group in GROUPS for one in group.indicators}
 
 
 def find(key: str) -> Indicator:
-    """The entry of this key; one that names ages is made for them, whether listed or not.
+    """The entry of this key; one that names ages or a population is made for them, whether listed
+    or not.
 
-    Raises: ValueError that lists the keys and the kinds of key that name ages, or says what is
-            wrong with the ages.
+    Raises: ValueError that lists the keys and the kinds of key that name ages or a population, or
+            says what is wrong with the ages.
     >>> find("e80").label
     'Life expectancy at 80'
     >>> find("20q40").label
     'Chance of dying between 40 and 60'
+    >>> find("asr_by_north.f.2020").label
+    'Age-standardised death rate (ages of north.f.2020)'
     """
     if key in INDICATORS:
         return INDICATORS[key]
@@ -104,5 +125,5 @@ def find(key: str) -> Indicator:
             return made
     raise ValueError(
         f"no indicator is named {key!r}; the names are {', '.join(INDICATORS)}, and with other ages"
-        f" {', '.join(pattern.example for pattern in PATTERNS)}"
+        f" or populations {', '.join(pattern.example for pattern in PATTERNS)}"
     )

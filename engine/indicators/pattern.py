@@ -1,4 +1,4 @@
-"""Keys that name ages: one maker for every age, so that none has to be listed."""
+"""Keys that name ages or a population: one maker for all of a kind, so that none is listed."""
 
 import re
 from collections.abc import Callable
@@ -12,7 +12,7 @@ OLDEST = 120
 
 @dataclass(frozen=True, slots=True)
 class Pattern:
-    """A kind of key and what makes its entry from the numbers in it."""
+    """A kind of key and what makes its entry from the ages, or the code, in it."""
 
     example: str
     key: re.Pattern[str]
@@ -21,7 +21,9 @@ class Pattern:
     def find(self, key: str) -> Indicator | None:
         """The entry, or None where the key is of another kind."""
         found = self.key.fullmatch(key)
-        return self.make(*map(int, found.groups())) if found else None
+        if not found:
+            return None
+        return self.make(*(int(part) if part.isdigit() else part for part in found.groups()))
 
 
 def require_ages(*ages: int) -> None:

@@ -1,6 +1,7 @@
 """Death rates as they would be at the ages of a standard population, and deaths against those that
 the rates of a larger area would have brought."""
 
+import re
 from collections.abc import Callable
 
 import numpy as np
@@ -9,6 +10,7 @@ from engine.ages import AgeGrid, Array
 from engine.chain import Chain
 from engine.estimates import Reason
 from engine.indicator import Indicator, Needs, Unit
+from engine.indicators.pattern import Pattern
 from engine.indicators.rates import PER_100000
 from engine.panel import Panel
 from engine.standardisation import (
@@ -186,3 +188,5 @@ FAMILY = (
         partials=lambda chain: _indirect(chain).gradient,
     ),
 )
+CODE = r"[A-Za-z0-9_.-]{1,32}\.[fmp]\.[0-9]{4}"  # area, sex, year
+PATTERNS = (Pattern("asr_by_north.f.2020", re.compile(f"asr_by_({CODE})"), by_population),)

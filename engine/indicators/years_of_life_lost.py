@@ -1,17 +1,19 @@
 """Years of life lost: a death counts by the years it came too early."""
 
+import re
+
 import numpy as np
 
 from engine.ages import Array
 from engine.chain import Chain
 from engine.estimates import Reason
 from engine.indicator import Indicator, Needs, Unit
+from engine.indicators.pattern import AGE, Pattern, require_ages
 from engine.standardisation import Weighted
 from engine.standards.remaining_years import GBD_2010
 from engine.years_lost import before, by_reference, rate
 
 PER_LIVED = Unit("years_per_100000", "years per 100,000 person-years", 100_000, 0, limits="gamma")
-OLDEST = 120
 LIMITS = "Fay & Feuer (1997), Statistics in Medicine 16, 791-801 (limits)"
 AGES_MATTER = (
     "It counts years as they are lost among the people there are, so it depends on how old they"
@@ -21,6 +23,7 @@ AGES_MATTER = (
 
 def before_age(age: int) -> Indicator:
     """Years lost before an exact age."""
+    require_ages(0, age)
 
     def read(chain: Chain) -> Weighted:
         grid, rates = chain.panel.grid, chain.rates
@@ -99,3 +102,4 @@ FAMILY = (
         partials=_reference_gradient,
     ),
 )
+PATTERNS = (Pattern("yll70", re.compile(f"yll{AGE}"), before_age),)

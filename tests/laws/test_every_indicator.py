@@ -7,22 +7,21 @@ import pytest
 from hypothesis import HealthCheck, given
 from hypothesis import settings as how
 from numpy.testing import assert_allclose, assert_array_equal
-from scipy.special import logit
 
-from engine.ages import Array
 from engine.chain import gradient, run
 from engine.estimates import Estimate, Reason
 from engine.indicators import INDICATORS, Indicator, difference, estimate, find
 from engine.panel import Panel
 from engine.settings import SETTINGS, Settings
-from tests.factories import GRIDS, codes, gompertz_panel, panels, persons_panel
+from tests.factories import GRIDS, codes, complete, gompertz_panel, panels, persons_panel
 
 CHAINS = {key: replace(settings, draws=20) for key, settings in SETTINGS.items()}
 every_indicator = pytest.mark.parametrize("indicator", INDICATORS.values(), ids=lambda i: i.key)
-smooth = pytest.mark.parametrize(
-    "indicator",
-    [i for i in (*INDICATORS.values(), find("e80"), find("e1"), find("e0_45")) if i.smooth],
-    ids=lambda i: i.key,
+MADE = [find(key) for key in ("e80", "e1", "e0_45", "yll40", "asr_by_isle.p.2010")]
+SMOOTH = [i for i in (*INDICATORS.values(), *MADE) if i.smooth]
+smooth = pytest.mark.parametrize("indicator", SMOOTH, ids=lambda i: i.key)
+read_off_rates = pytest.mark.parametrize(  # a count over births is not
+    "indicator", [i for i in SMOOTH if i.unit.limits != "count"], ids=lambda i: i.key
 )
 every_chain = pytest.mark.parametrize("settings", CHAINS.values(), ids=lambda s: s.key)
 drawn = how(max_examples=5, deadline=None, suppress_health_check=list(HealthCheck))
@@ -32,8 +31,10 @@ PARTS = [field.name for field in fields(Estimate)]
 
 def some(grid: str = "abridged", *, people: float = 4_000_000) -> Panel:
     slopes = np.linspace(0.085, 0.11, 7)
-    return gompertz_panel(
-        GRIDS[grid], seed=8, slope=slopes, level=0.1 / np.exp(86 * slopes), people=people
+    return complete(
+        gompertz_panel(
+            GRIDS[grid], seed=8, slope=slopes, level=0.1 / np.exp(86 * slopes), people=people
+        )
     )
 
 
@@ -80,7 +81,8 @@ def test_a_split_of_many_populations_changes_no_bit(
     indicator: Indicator, settings: Settings
 ) -> None:
     slopes = np.linspace(0.08, 0.11, 120)
-    panel = gompertz_panel(seed=1, slope=slopes, level=0.1 / np.exp(86 * slopes), people=60_000)
+    level = 0.1 / np.exp(86 * slopes)
+    panel = complete(gompertz_panel(seed=1, slope=slopes, level=level, people=60_000))
     streams = codes(panel)
     together = estimate(indicator, panel, settings, streams=streams)
     for where in (slice(0, 49), slice(49, 51), slice(51, 120), slice(1, None, 7)):
@@ -137,14 +139,14 @@ def test_the_interval_contains_the_value(
 
 
 @every_chain
-@smooth
+@read_off_rates
 @pytest.mark.parametrize("grid", GRIDS)
 @pytest.mark.parametrize("sex", ["f", "m", "p"])
 def test_the_gradient_is_the_complex_step(
     indicator: Indicator, settings: Settings, grid: str, sex: str
 ) -> None:
     infant = np.array([0.004, 0.05, 0.12])  # on three pieces of the first-year rules
-    panel = gompertz_panel(GRIDS[grid], seed=3, infant=infant, sex=sex, people=2e6)
+    panel = complete(gompertz_panel(GRIDS[grid], seed=3, infant=infant, sex=sex, people=2e6))
     if sex == "p":
         weight, ratio = np.array([0.42, 0.58]), np.array([0.87, 1.12])
         panel = replace(panel, infant_weight=weight + 0 * panel.infant_weight,
@@ -164,23 +166,14 @@ def test_the_gradient_is_the_complex_step(
 @smooth
 @drawn
 @given(panel=panels())
-def test_a_hundred_times_the_people_is_a_tenth_of_the_interval(
+def test_a_hundred_times_the_people_is_a_tenth_of_the_standard_error(
     indicator: Indicator, settings: Settings, panel: Panel
 ) -> None:
-    larger = replace(panel, deaths=100 * panel.deaths, exposure=100 * panel.exposure)
-    small, large = (estimate(indicator, counts, settings) for counts in (panel, larger))
-    known = np.isfinite(small.low)
+    counts = {name: 100 * getattr(panel, name) for name in ("deaths", "exposure", "births")}
+    small, large = (estimate(indicator, one, settings) for one in (panel, replace(panel, **counts)))
+    known = np.isfinite(small.se)
     assert_allclose(large.value[known], small.value[known], rtol=1e-9)
-    small_width, large_width = (
-        np.diff(scaled(indicator, np.stack([e.low[known], e.high[known]])), axis=0)
-        for e in (small, large)
-    )
-    assert_allclose(large_width, small_width / 10, rtol=1e-6)
-
-
-def scaled(indicator: Indicator, limits: Array) -> Array:
-    """On the scale on which limits are taken: that of log odds for a part of a whole."""
-    return logit(limits) if indicator.unit.limits == "odds" else limits
+    assert_allclose(large.se[known], small.se[known] / 10, rtol=1e-9)
 
 
 @pytest.mark.parametrize("key", ["45q15", "5q0"])
@@ -197,7 +190,11 @@ def test_a_difference_turned_round_changes_its_sign(
 ) -> None:
     this, that = some(), some()[::-1]
     streams = codes(this, "this"), codes(that, "that")
-    shared = replace(this, deaths=np.floor(np.minimum(this.deaths, that.deaths) / 3))
+    third = {
+        name: np.floor(np.minimum(getattr(this, name), getattr(that, name)) / 3)
+        for name in ("deaths", "births")
+    }
+    shared = replace(this, **third)
     one = difference(indicator, this, that, settings, shared=shared, streams=streams)
     two = difference(indicator, that, this, settings, shared=shared, streams=streams[::-1])
     assert_array_equal(one.value, -two.value)
@@ -217,7 +214,10 @@ def test_deaths_counted_in_both_narrow_the_interval(
 ) -> None:
     settings = replace(settings, draws=400)
     part, rest = some("single"), some("single")[::-1]
-    whole = replace(part, deaths=part.deaths + rest.deaths, exposure=part.exposure + rest.exposure)
+    sums = {
+        name: getattr(part, name) + getattr(rest, name) for name in ("deaths", "exposure", "births")
+    }
+    whole = replace(part, **sums)
     streams = codes(part, "part"), codes(part, "whole")
     naive = difference(indicator, part, whole, settings, streams=streams)
     right = difference(indicator, part, whole, settings, shared=part, streams=streams)
@@ -230,7 +230,7 @@ def test_deaths_counted_in_both_narrow_the_interval(
 @every_chain
 @every_indicator
 def test_persons_are_read_as_any_other(indicator: Indicator, settings: Settings) -> None:
-    panel = persons_panel(seed=6)
+    panel = complete(persons_panel(seed=6))
     got = estimate(indicator, panel, settings, streams=codes(panel))
     assert got.reason == Reason.NONE
     assert got.low <= got.value <= got.high

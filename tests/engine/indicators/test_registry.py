@@ -38,6 +38,10 @@ def test_a_group_asks_one_question() -> None:
         ("1q119", "Chance of dying between 119 and 120"),
         ("l1", "Survivors to 1"),
         ("l120", "Survivors to 120"),
+        ("yll1", "Years of life lost before 1"),
+        ("yll120", "Years of life lost before 120"),
+        ("asr_by_isle.f.2020", "Age-standardised death rate (ages of isle.f.2020)"),
+        ("asr_by_st.ives-1.p.1998", "Age-standardised death rate (ages of st.ives-1.p.1998)"),
     ],
 )
 def test_ages_are_read_out_of_a_key(key: str, label: str) -> None:
@@ -55,7 +59,8 @@ def test_what_is_listed_is_what_is_found() -> None:
 @pytest.mark.parametrize(
     "key",
     ["", "e", "e-1", "e065", "e5.5", "E0", "mode ", "q0", "5q", "5q05", "05q0", "l", "l065",
-     "e15_065", "e15-65", "e15_65_", "e1234", "\N{ARABIC-INDIC DIGIT FIVE}q0"],
+     "e15_065", "yll", "yll075", "asr_by_", "asr_by_isle", "asr_by_isle.x.2020", "asr_by_isle.f.20",
+     "asr_esp2012", "e15-65", "e15_65_", "e1234", "\N{ARABIC-INDIC DIGIT FIVE}q0"],
 )  # fmt: skip
 def test_an_unknown_key_is_told_the_known_ones(key: str) -> None:
     told = r"the names are e0, e65, .*5q0.* with other ages.* e80, e15_65, 40q30, l65"
@@ -64,7 +69,7 @@ def test_an_unknown_key_is_told_the_known_ones(key: str) -> None:
 
 
 @pytest.mark.parametrize(
-    "key", ["e121", "e65_15", "e15_15", "e15_121", "0q30", "60q61", "l0", "l121"]
+    "key", ["e121", "e65_15", "e15_15", "e15_121", "0q30", "60q61", "l0", "l121", "yll0", "yll121"]
 )
 def test_ages_that_make_no_figure_are_refused(key: str) -> None:
     with pytest.raises(ValueError, match="make no indicator; ages rise from the first to the last"):
@@ -100,6 +105,9 @@ def test_units_scale_for_print_only() -> None:
     assert units["45q15"] == units["5q0"] == (1000, 1)
     assert units["l65"] == (100, 1)
     assert units["ageing_rate"] == (100, 1)
+    assert units["cdr"] == units["asr_segi"] == units["isr"] == (100_000, 1)
+    assert units["yll75"] == units["yll_ref"] == (100_000, 0)
+    assert units["imr"] == units["sbr"] == (1000, 1)
 
 
 def test_parts_of_a_whole_keep_limits_between_0_and_1() -> None:
