@@ -1,11 +1,16 @@
-"""What the plain forms of pinned pages offer: areas, sexes and years of the edition."""
+"""What the plain forms of pinned pages offer: areas, sexes and years of the edition, indicators in
+their groups, and settings."""
 
 from dataclasses import dataclass
 
+from engine.indicators import GROUPS, find
+from engine.settings import SETTINGS
 from server.results.loading import Holdings
 from server.sentences import names
+from server.sentences.text import _
 
 Options = tuple[tuple[str, str], ...]  # value and label, for a form
+Grouped = tuple[tuple[str, Options], ...]  # the options under the label of their group
 
 
 @dataclass(frozen=True, slots=True)
@@ -15,6 +20,7 @@ class Offer:
     areas: Options
     sexes: Options
     periods: Options
+    settings: Options
 
 
 def offer(held: Holdings) -> Offer:
@@ -22,4 +28,17 @@ def offer(held: Holdings) -> Offer:
         areas=tuple((area.code, area.name or area.code) for area in held.areas),
         sexes=tuple((sex, names.sex(sex)) for sex in ("f", "m", "p") if sex in held.sexes),
         periods=tuple((period, period) for period in reversed(held.periods)),
+        settings=tuple((one.key, _(one.label)) for one in SETTINGS.values()),
     )
+
+
+def indicators(asked: str) -> Grouped:
+    """Every indicator of the registry in its group; the one asked for too, where it names ages or a
+    standard of its own."""
+    groups = tuple(
+        (_(group.label), tuple((one.key, _(one.label)) for one in group.indicators))
+        for group in GROUPS
+    )
+    listed = {key for _label, options in groups for key, _text in options}
+    own = find(asked)
+    return groups if asked in listed else (*groups, (_("As asked"), ((asked, _(own.label)),)))

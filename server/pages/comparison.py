@@ -8,7 +8,7 @@ from server.exports.table import Table
 from server.pages import comparison_charts as charts
 from server.pages import comparison_tables as tables
 from server.pages import frames
-from server.pages.choices import Offer, offer
+from server.pages.choices import Grouped, Offer, indicators, offer
 from server.pages.page import Caution, Frame, Page
 from server.results.comparison import Comparison, comparison
 from server.results.questions import (
@@ -37,6 +37,7 @@ class Choice:
     this: PopulationYear
     that: PopulationYear
     of: str
+    indicators: Grouped
     figures: str
     settings: str
 
@@ -47,6 +48,7 @@ class ComparisonPage(Page):
 
     template: ClassVar[str] = "comparison/page.html"
     drawn: frozenset[str]  # keys of the pictures there are
+    groups: tuple[tuple[str, str], ...]  # further tables of figures, and what each is about
     not_parted: Sentence  # why H has no picture, where life expectancy has one
     further: tuple[Sentence, ...]
     computed: tuple[Sentence, ...]
@@ -69,6 +71,7 @@ def build(session: Session, heading: Heading, question: ComparisonQuestion) -> C
         cautions=_cautions(found),
         twins=frames.twins(heading, question),
         drawn=frozenset(chart.key for chart in drawn),
+        groups=tuple((table.key, table.title) for table in tables.further(found)),
         not_parted=ages_say.not_parted(_why_not_parted(found)) if _why_not_parted(found) else (),
         further=_further(found),
         computed=_computed(found),
@@ -83,7 +86,7 @@ def _charts(found: Comparison, source: str) -> tuple[Chart, ...]:
 
 
 def _tables(found: Comparison) -> tuple[Table, ...]:
-    made = [tables.figures(found)]
+    made = [tables.figures(found), *tables.further(found)]
     if found.contributions and not found.same:
         made += [tables.contributions(found), tables.ages(found)]
     return (*made, tables.survivors(found))
@@ -151,7 +154,9 @@ def _cautions(found: Comparison) -> tuple[Caution, ...]:
     both = tables.pair(found)
     lived = {float(side.panel.exposure.sum()): side.of for side in sides}
     fewest = min(lived)
-    provisional = {side.of.period for side in sides if side.loaded.status == "provisional"}
+    provisional = {
+        tables.named(found, side.of).period for side in sides if side.loaded.status == "provisional"
+    }
     modelled = found.settings.open_interval != "one_over_m"
     return frames.cautions(
         beside=[
@@ -212,6 +217,7 @@ def _choice(found: Comparison) -> Choice:
         this=question.this,
         that=question.that,
         of=question.of,
+        indicators=indicators(question.of),
         figures=question.figures,
         settings=question.settings,
     )

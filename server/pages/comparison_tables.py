@@ -5,14 +5,18 @@ from collections.abc import Iterable, Sequence
 import numpy as np
 
 from engine.ages import Array
-from engine.indicators import find
+from engine.indicators import GROUPS, find
+from engine.settings import span
 from server.exports.table import Cell, Column, Row, Table
 from server.pages.cells import columns, gap, number, triple
 from server.pages.population_year_tables import what_it_counts, why_missing
 from server.results.comparison import DECOMPOSED, Comparison, Contribution, Side
+from server.results.estimating import COMPARED, USUAL
+from server.results.loading import Shared
 from server.results.questions import PopulationYear
 from server.sentences import comparison as say
 from server.sentences import contributions as ages_say
+from server.sentences import names
 from server.sentences.text import _
 
 RADIX = 100_000
@@ -20,8 +24,9 @@ THOUSAND = 1_000  # contributions to H are printed in thousandths
 PRINTED = {"e0": 1, "H": THOUSAND}
 
 
-def named(found: Comparison, of: PopulationYear) -> say.Named:
-    return say.Named(of.sex, found.holdings.name(of.area), of.period)
+def named(found: Comparison, of: PopulationYear | Shared) -> say.Named:
+    periods = of.periods if isinstance(of, Shared) else span(of.period, found.settings.years)
+    return say.Named(of.sex, found.holdings.name(of.area), names.years(periods))
 
 
 def pair(found: Comparison) -> say.Pair:
@@ -29,7 +34,26 @@ def pair(found: Comparison) -> say.Pair:
 
 
 def figures(found: Comparison) -> Table:
-    """Every usual indicator on both sides, and the difference, each with its interval."""
+    """The few main indicators, and the one asked for, on both sides, and the difference, each with
+    its interval."""
+    keys = tuple(dict.fromkeys((*USUAL, found.question.of)))
+    return _figures(found, "figures", _("The figures of both sides"), keys)
+
+
+def further(found: Comparison) -> tuple[Table, ...]:
+    """All other indicators, a table for each group of the registry."""
+    return tuple(
+        _figures(found, f"figures-{group.key}", _(group.question), keys)
+        for group in GROUPS
+        if (
+            keys := [
+                one.key for one in group.indicators if one.key in COMPARED and one.key not in USUAL
+            ]
+        )
+    )
+
+
+def _figures(found: Comparison, name: str, title: str, keys: Sequence[str]) -> Table:
     both = pair(found)
     heads = (
         Column("indicator", _("Indicator")),
@@ -46,11 +70,10 @@ def figures(found: Comparison) -> Table:
     )
     shown = {
         key: [found.this.estimates[key], found.that.estimates[key], found.difference[key]]
-        for key in found.difference
+        for key in keys
     }
     note = " ".join([note, *why_missing(shown, found.settings)])
-    rows = tuple(_figure_row(found, key) for key in found.difference)
-    return Table("figures", _("The figures of both sides"), heads, rows, note)
+    return Table(name, title, heads, tuple(_figure_row(found, key) for key in keys), note)
 
 
 def _head(label: str, side: Side) -> str:

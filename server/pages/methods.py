@@ -3,8 +3,7 @@
 from dataclasses import dataclass
 from typing import ClassVar
 
-from engine.indicator import Indicator
-from engine.indicators import INDICATORS
+from engine.indicators import GROUPS
 from engine.settings import SETTINGS
 from server.exports.table import Column, Row, Table
 from server.intake.checks import KINDS
@@ -15,20 +14,38 @@ from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
 
 
+@dataclass(frozen=True, slots=True)
+class Chapter:
+    """The indicators that answer one question."""
+
+    key: str
+    label: str
+    question: str
+    entries: tuple[Entry, ...]
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class MethodsPage(Page):
     """How is this figure made, and who says so?"""
 
     template: ClassVar[str] = "methods/page.html"
-    links: tuple[Sentence, ...]  # to every entry, since the page is long
-    indicators: tuple[Entry, ...]
+    links: tuple[Sentence, ...]  # to every chapter and chain, since the page is long
+    chapters: tuple[Chapter, ...]
     chains: tuple[Entry, ...]
 
 
 def build() -> MethodsPage:
-    indicators = tuple(INDICATORS.values())
-    entries = tuple(
-        Entry(one.key, _(one.label), _(one.symbol), say.indicator(one)) for one in indicators
+    chapters = tuple(
+        Chapter(
+            group.key,
+            _(group.label),
+            _(group.question),
+            tuple(
+                Entry(one.key, _(one.label), _(one.symbol), say.indicator(one))
+                for one in group.indicators
+            ),
+        )
+        for group in GROUPS
     )
     chains = tuple(
         Entry(one.key, _(one.label), one.key, say.settings(one)) for one in SETTINGS.values()
@@ -43,20 +60,24 @@ def build() -> MethodsPage:
         answer=phrase(
             _("Every figure is made by a published method, under settings named in its address.")
         ),
-        links=tuple((Piece(one.label, f"#{one.key}"),) for one in (*entries, *chains)),
-        indicators=entries,
+        links=(
+            *((Piece(one.label, f"#{one.key}"),) for one in chapters),
+            *((Piece(one.label, f"#{one.key}"),) for one in chains),
+        ),
+        chapters=chapters,
         chains=chains,
-        tables=(_indicators(indicators), _settings(), _checks()),
+        tables=(_indicators(), _settings(), _checks()),
         twins={twin: f"/methods.{twin}" for twin in ("csv", "xlsx", "json")},
     )
 
 
-def _indicators(indicators: tuple[Indicator, ...]) -> Table:
+def _indicators() -> Table:
     return Table(
         "indicators",
         _("Indicators"),
         (
             Column("key", _("key in addresses")),
+            Column("group", _("group")),
             Column("symbol", _("symbol")),
             Column("label", _("name")),
             Column("unit", _("unit")),
@@ -70,6 +91,7 @@ def _indicators(indicators: tuple[Indicator, ...]) -> Table:
             Row(
                 (
                     one.key,
+                    _(group.label),
                     one.symbol,
                     _(one.label),
                     _(one.unit.label),
@@ -80,7 +102,8 @@ def _indicators(indicators: tuple[Indicator, ...]) -> Table:
                     _(one.source),
                 )
             )
-            for one in indicators
+            for group in GROUPS
+            for one in group.indicators
         ),
     )
 

@@ -3,6 +3,8 @@
 from dataclasses import dataclass
 from typing import ClassVar
 
+import numpy as np
+
 from engine.indicators import INDICATORS
 from server.charts.chart import Chart
 from server.exports.table import Table
@@ -49,6 +51,7 @@ class PopulationYearPage(Page):
 
     template: ClassVar[str] = "population-year/page.html"
     drawn: frozenset[str]  # keys of the pictures there are
+    groups: tuple[tuple[str, str], ...]  # further tables of figures, and what each is about
     about_table: Sentence
     rows: str  # summary of the folded life table
     computed: tuple[Sentence, ...]
@@ -67,7 +70,7 @@ def build(
         answer=say.answer(
             found.of.sex,
             found.name,
-            found.of.period,
+            found.period,
             found.estimates["e0"],
             reason(int(found.estimates["e0"].reason), found.settings),
         ),
@@ -77,6 +80,7 @@ def build(
         cautions=_cautions(found),
         twins=frames.twins(heading, question),
         drawn=frozenset(chart.key for chart in charts),
+        groups=tuple((table.key, table.title) for table in tables.further(found)),
         about_table=say.about_table(found.chain.table.grid.open_age, modelled=found.chain.modelled),
         rows=_rows(found),
         computed=basis.computed(found.settings),
@@ -93,7 +97,7 @@ def _charts(found: Findings, source: str) -> tuple[Chart, ...]:
 
 
 def _tables(found: Findings) -> tuple[Table, ...]:
-    made = [tables.figures(found), tables.life(found), tables.rises(found)]
+    made = [tables.figures(found), *tables.further(found), tables.life(found), tables.rises(found)]
     if found.gainful:
         made.append(tables.gains(found))
     return tuple(table for table in made if table.rows)
@@ -113,8 +117,8 @@ def _frame(found: Findings) -> Frame:
     return frames.pinned(
         heading,
         found.question,
-        title=_("{who}, {year}", who=names.population_first(of.sex, found.name), year=of.period),
-        place=(Piece(_("{who} in {year}", who=who, year=of.period), "#further"),),
+        title=_("{who}, {year}", who=names.population_first(of.sex, found.name), year=found.period),
+        place=(Piece(_("{who} in {year}", who=who, year=found.period), "#further"),),
         figures=found.question.figures,
         settings=found.question.settings,
         notices=frames.notices(heading, found.question, found.moved, headline),
@@ -124,7 +128,7 @@ def _frame(found: Findings) -> Frame:
 def _lead(found: Findings) -> tuple[Sentence, ...]:
     said: list[Sentence] = []
     if found.before is not None and say.known(found.estimates, "e0"):
-        said.append(say.change(found.before.change["e0"], found.before.of.period))
+        said.append(say.change(found.before.change["e0"], found.before.period))
     said.append(say.meanings(found.estimates))
     law = address(
         found.heading.collection.code,
@@ -143,7 +147,7 @@ def _lead(found: Findings) -> tuple[Sentence, ...]:
 
 
 def _cautions(found: Findings) -> tuple[Caution, ...]:
-    of, before, rate = found.of, found.before, found.chain.rates
+    before, rate = found.before, found.chain.rates
     panel = found.loaded.panel
     joined = [label for label, is_so in zip(panel.grid.labels, rate.joined, strict=True) if is_so]
     empty = [
@@ -153,9 +157,9 @@ def _cautions(found: Findings) -> tuple[Caution, ...]:
         )
         if deaths == 0 and years > 0
     ]
-    provisional = [of.period] if found.loaded.status == "provisional" else []
+    provisional = [found.period] if found.loaded.status == "provisional" else []
     if before and before.loaded.status == "provisional":
-        provisional.append(before.of.period)
+        provisional.append(before.period)
     return frames.cautions(
         beside=[
             basis.provisional(provisional),
@@ -165,7 +169,7 @@ def _cautions(found: Findings) -> tuple[Caution, ...]:
         below=[
             basis.no_deaths(empty),
             basis.joined(joined),
-            basis.regrouped(before.of.period)
+            basis.regrouped(before.period)
             if before and before.loaded.panel.grid != panel.grid
             else None,
             *basis.reading(found.settings),
@@ -174,16 +178,14 @@ def _cautions(found: Findings) -> tuple[Caution, ...]:
 
 
 def _births(found: Findings) -> tuple[Sentence, ...]:
-    births = found.loaded.births
-    return (
-        () if births is None else (say.births(found.of.sex, found.name, found.of.period, births),)
-    )
+    births = float(found.loaded.panel.births[0])
+    return () if np.isnan(births) else (say.births(found.of.sex, found.name, found.period, births),)
 
 
 def _rows(found: Findings) -> str:
     return say.table_rows(
         names.population(found.of.sex, found.name),
-        found.of.period,
+        found.period,
         len(found.chain.table.grid),
     )
 
@@ -201,7 +203,7 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
             )
 
     if found.before:
-        compared(found.before.of, _("against {year}", year=found.before.of.period))
+        compared(found.before.of, _("against {year}", year=found.before.period))
     first = PopulationYear(of.area, of.sex, held.periods[0])
     compared(first, _("against {year}", year=first.period))
     for sex in ("f", "m"):

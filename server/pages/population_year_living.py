@@ -34,7 +34,7 @@ def survivors(found: Findings, source: str) -> Chart | None:
         finding=say.survivors(found.of.sex, reach, found.estimates),
         unit=_(
             "Survivors to each age, of 100,000 born, at the death rates of {year}",
-            year=found.of.period,
+            year=found.period,
         ),
         source=source,
         described=_(
@@ -156,7 +156,7 @@ def _first_year(grid: AgeGrid, density: Array, highest: float) -> tuple[Note, ..
 
 
 def who(found: Findings) -> str:
-    return _("{sex}, {year}", sex=names.sex(found.of.sex), year=found.of.period)
+    return _("{sex}, {year}", sex=names.sex(found.of.sex), year=found.period)
 
 
 def axis(found: Findings) -> tuple[float, float]:

@@ -5,7 +5,7 @@ from collections.abc import Mapping, Sequence
 import numpy as np
 
 from engine.estimates import Estimate, Reason
-from engine.indicators import find
+from engine.indicators import GROUPS, find
 from engine.settings import Settings
 from server.exports.table import Cell, Column, Gap, GapKind, Row, Table
 from server.pages.cells import columns, count, number, triple
@@ -21,32 +21,39 @@ DAYS = 365.25
 
 def figures(found: Findings) -> Table:
     """The few main numbers: this year, the year before, the change, each with its interval."""
+    title = _("The figures of {who}", who=names.sex_and_year(found.of.sex, found.period))
+    return _figures(found, "figures", title, USUAL)
+
+
+def further(found: Findings) -> tuple[Table, ...]:
+    """All other numbers, a table for each group of the registry."""
+    return tuple(
+        _figures(found, f"figures-{group.key}", _(group.question), keys)
+        for group in GROUPS
+        if (keys := [one.key for one in group.indicators if one.key not in USUAL])
+    )
+
+
+def _figures(found: Findings, name: str, title: str, keys: Sequence[str]) -> Table:
     heads = [Column("indicator", _("Indicator"))]
-    heads += columns("value", dated(found.of.period, found.loaded.status), 1)
+    heads += columns("value", dated(found.period, found.loaded.status), 1)
     note = _(
         "Under each figure its {level} % interval, which covers chance in deaths only.",
         level=round(100 * found.settings.level),
     )
     before = found.before
     if before:
-        heads += columns("before", dated(before.of.period, before.loaded.status), 1)
+        heads += columns("before", dated(before.period, before.loaded.status), 1)
         heads += columns("change", _("change"), 1, signed=True)
         note += " " + _(
             "Change: {year} less {before}, taken before rounding.",
-            year=found.of.period,
-            before=before.of.period,
+            year=found.period,
+            before=before.period,
         )
-    shown = {
-        key: [found.estimates[key], *([before.change[key]] if before else [])] for key in USUAL
-    }
+    shown = {key: [found.estimates[key], *([before.change[key]] if before else [])] for key in keys}
     note = " ".join([note, *why_missing(shown, found.settings)])
-    return Table(
-        "figures",
-        _("The figures of {who}", who=names.sex_and_year(found.of.sex, found.of.period)),
-        tuple(heads),
-        tuple(_figure_row(found, key) for key in USUAL),
-        note,
-    )
+    rows = tuple(_figure_row(found, key) for key in keys)
+    return Table(name, title, tuple(heads), rows, note)
 
 
 def why_missing(shown: Mapping[str, Sequence[Estimate]], settings: Settings) -> list[str]:
@@ -115,7 +122,7 @@ def life(found: Findings) -> Table:
     )
     return Table(
         "life",
-        _("Life table of {who}", who=names.sex_and_year(found.of.sex, found.of.period)),
+        _("Life table of {who}", who=names.sex_and_year(found.of.sex, found.period)),
         heads,
         tuple(_life_row(found, at) for at in range(len(found.chain.table.grid))),
         _("Survivors, deaths and years lived are those of 100,000 born."),

@@ -6,10 +6,10 @@ from typing import ClassVar
 import numpy as np
 
 from engine.estimates import Reason
-from engine.indicators import INDICATORS
+from engine.settings import span
 from server.pages import frames, trend_chart
 from server.pages import trend_tables as tables
-from server.pages.choices import Offer, Options, offer
+from server.pages.choices import Grouped, Offer, indicators, offer
 from server.pages.page import Caution, Page
 from server.results.questions import (
     ComparisonQuestion,
@@ -37,7 +37,7 @@ class Choice:
 
     action: str
     offer: Offer
-    indicators: Options
+    indicators: Grouped
     asked: TrendQuestion
 
 
@@ -112,14 +112,20 @@ def course(found: Series, line: int) -> say.Course | None:
         found.indicator,
         sex,
         found.holdings.name(area),
-        *ends,
+        _years(found, ends[0]),
+        _years(found, ends[1]),
         first,
         last,
         found.change[line],
-        found.middle[line],
+        found.middle[line] and _years(found, found.middle[line]),
         found.earlier[line],
         found.later[line],
     )
+
+
+def _years(found: Series, period: str) -> str:
+    """The year, or the years added up."""
+    return names.years(span(period, found.settings.years))
 
 
 def _further(found: Series, courses: list[say.Course | None]) -> tuple[Sentence, ...]:
@@ -127,10 +133,10 @@ def _further(found: Series, courses: list[say.Course | None]) -> tuple[Sentence,
     asked, heading = found.question, found.heading
     place = (heading.collection.code, heading.edition.number)
     changes, lives = [], []
-    for line, one in zip(found.lines[: SAID + 1], courses, strict=False):
-        if one is None:
+    for line, ends, one in zip(found.lines[: SAID + 1], found.ends, courses, strict=False):
+        if one is None or ends is None:
             continue
-        last, first = (PopulationYear(*line, period) for period in (one.last, one.first))
+        first, last = (PopulationYear(*line, period) for period in ends)
         compared = ComparisonQuestion(last, first, asked.of, asked.figures, asked.settings)
         lived = PopulationYearQuestion(last, asked.figures, asked.settings)
         words = _("{who}, {last} against {first}", who=one.who, last=one.last, first=one.first)
@@ -144,7 +150,10 @@ def _headline(found: Series) -> Headline:
     """The figure by which a newer edition is measured: the first line's newest."""
     year = found.headline.period
     label = _(
-        "{label} of {who} in {year}", label=_(found.indicator.label), who=_who(found, 0), year=year
+        "{label} of {who} in {year}",
+        label=_(found.indicator.label),
+        who=_who(found, 0),
+        year=_years(found, year),
     )
     here = found.estimate.value[0, found.periods.index(year)]
     there = found.moved.value if found.moved else np.nan
@@ -164,7 +173,12 @@ def _cautions(found: Series) -> tuple[Caution, ...]:
         if tables.widest(found.estimate, line) > abs(float(found.change.value[line]))
     ]
     return frames.cautions(
-        beside=[basis.provisional(sorted(provisional)), say.small(small), *_missing(found)],
+        beside=[
+            basis.provisional(sorted(provisional)),
+            basis.pooled(found.settings),
+            say.small(small),
+            *_missing(found),
+        ],
         below=basis.reading(found.settings),
     )
 
@@ -186,11 +200,9 @@ def _who(found: Series, line: int) -> str:
 
 def _choice(found: Series) -> Choice:
     heading = found.heading
-    keys = dict.fromkeys([*INDICATORS, found.indicator.key])
-    labels = {key: INDICATORS.get(key, found.indicator).label for key in keys}
     return Choice(
         action=f"/c/{heading.collection.code}/{heading.edition.number}/{found.question.view}",
         offer=offer(found.holdings),
-        indicators=tuple((key, _(label)) for key, label in labels.items()),
+        indicators=indicators(found.indicator.key),
         asked=found.question,
     )

@@ -15,8 +15,18 @@ from engine.estimates import Estimate
 from engine.panel import Panel
 from engine.settings import Settings
 from engine.tables import LifeTable
-from server.results.estimating import USUAL, differences, estimates, stream
-from server.results.loading import Holdings, Loaded, holdings, load, overlap, shared_part
+from server.results.estimating import COMPARED, differences, estimates, stream
+from server.results.loading import (
+    Beside,
+    Found,
+    Holdings,
+    Loaded,
+    Shared,
+    holdings,
+    load,
+    overlap,
+    shared_part,
+)
 from server.results.questions import ComparisonQuestion, PopulationYear
 from server.results.revision import Moved, moved
 from server.store.connect import Session
@@ -60,7 +70,7 @@ class Comparison:
     groups: AgeGrid  # the same in groups of at least five years after the first, for pictures
     this: Side
     that: Side
-    overlap: PopulationYear | None  # deaths counted in both; None also where they are not held
+    overlap: Shared | None  # deaths counted in both; None also where they are not held
     difference: dict[str, Estimate]
     contributions: dict[str, Contribution]  # by indicator; missing where one side is undefined
     arriaga: Array  # [age] of `grid`, for e0
@@ -86,16 +96,18 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
     held = holdings(session, collection, number)
     for wanted in (question.this, question.that):
         held.require(wanted)
-    both = overlap(question.this, question.that, held.areas)
-    asked = tuple(dict.fromkeys((question.this, question.that, *([both] if both else []))))
-    loaded = load(session, collection, number, asked)
+    both = overlap(question.this, question.that, held.areas, settings.years)
+    asked: list[PopulationYear | Shared] = [question.this, question.that]
+    asked += [both] if both else []
+    beside = Beside.of(settings, held.areas, indicators.find(question.of))
+    loaded = load(session, collection, number, asked, beside)
     for wanted in (question.this, question.that):
         if wanted not in loaded:
             raise held.lacks(wanted)
     if both not in loaded:
         both = None
     grid = _shared_grid(loaded)
-    keys = USUAL if question.of in USUAL else (*USUAL, question.of)
+    keys = tuple(dict.fromkeys((*COMPARED, question.of)))
     this, that = (
         _side(collection, one, loaded[one], grid, settings, keys)
         for one in (question.this, question.that)
@@ -121,13 +133,13 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
             if np.isfinite(difference[key].value)
         },
         arriaga=_on(grid, decomposition.arriaga(this.table, that.table)),
-        moved=moved(session, heading, asked, lambda newer: _headline(question, newer, settings)),
+        moved=moved(
+            session, heading, asked, beside, lambda newer: _headline(question, newer, settings)
+        ),
     )
 
 
-def _headline(
-    question: ComparisonQuestion, loaded: dict[PopulationYear, Loaded], settings: Settings
-) -> float:
+def _headline(question: ComparisonQuestion, loaded: Found, settings: Settings) -> float:
     """The difference asked for, as the page of these population-years has it; nan where one of the
     two is not held."""
     if not {question.this, question.that} <= loaded.keys():
@@ -137,7 +149,7 @@ def _headline(
     return float(indicators.difference(indicators.find(question.of), this, that, settings).value)
 
 
-def _shared_grid(loaded: dict[PopulationYear, Loaded]) -> AgeGrid:
+def _shared_grid(loaded: Found) -> AgeGrid:
     """The finest to which both sides, and what is counted in both, can be summed."""
     return reduce(AgeGrid.common, (one.panel.grid for one in loaded.values()))
 

@@ -11,8 +11,11 @@ from engine.panel import Panel
 from engine.settings import Settings
 from server.results.questions import PopulationYear
 
-# The indicators of a population-year and of a comparison, in the order of the pages.
+# The few of a population-year and of a comparison that a reader meets first, in that order.
 USUAL = ("e0", "e65", "median", "mode", "edagger", "H", "ageing_rate", "45q15", "5q0")
+EVERY = tuple(dict.fromkeys((*USUAL, *indicators.INDICATORS)))
+# Those set against an area's own whole, each weighted by its own people, compare with nothing else.
+COMPARED = tuple(key for key in EVERY if not indicators.INDICATORS[key].needs.whole)
 
 
 def stream(collection: str, one: PopulationYear) -> NDArray[np.str_]:

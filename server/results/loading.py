@@ -1,19 +1,23 @@
 """From an edition's schedules to panels: one statement, however many population-years are asked."""
 
-from collections.abc import Iterable, Sequence
-from dataclasses import dataclass, replace
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass, field, replace
+from typing import Any, NamedTuple, Self
 
 import numpy as np
 
+from engine.ages import AgeGrid
+from engine.indicators import Indicator
 from engine.panel import Panel
+from engine.settings import Settings, span
 from server.results.questions import PopulationYear
 from server.sentences.names import listed
 from server.sentences.text import _
 from server.store import areas, schedules
 from server.store.connect import Session
-from server.store.records import Area, Key, Selection, Vector
+from server.store.records import MEASURES, Area, Key, Selection, Vector
 
-MEASURES = ("deaths", "person_years", "births")
+Cells = dict[Key, Vector]
 
 
 class NotInEdition(LookupError):
@@ -27,7 +31,6 @@ class Loaded:
 
     panel: Panel  # no batch axes
     status: str  # provisional where any part of it is
-    births: float | None
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,9 +79,10 @@ class Holdings:
             )
         )
 
-    def previous(self, wanted: PopulationYear) -> PopulationYear | None:
-        """The same area and sex a year before, where the edition holds it."""
-        before = replace(wanted, period=f"{int(wanted.period) - 1:04}")
+    def previous(self, wanted: PopulationYear, years: int = 1) -> PopulationYear | None:
+        """The same area and sex a year before, or as many as are pooled, where the edition holds
+        it."""
+        before = replace(wanted, period=f"{int(wanted.period) - years:04}")
         return before if before in self.status else None
 
 
@@ -93,50 +97,148 @@ def holdings(session: Session, collection: str, number: int) -> Holdings:
     )
 
 
+@dataclass(frozen=True, slots=True)
+class Shared:
+    """Counts that are part of two populations: whose, and in which years."""
+
+    area: str
+    sex: str
+    periods: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Beside:
+    """What figures need besides the counts of the populations asked for."""
+
+    years: int = 1  # pooled: the year asked for and those before it
+    parents: Mapping[str, str] = field(default_factory=dict)  # area to the one it is part of
+    standard: PopulationYear | None = None  # whose people weight the ages
+
+    @classmethod
+    def of(cls, settings: Settings, tree: Iterable[Area], *of: Indicator) -> Self:
+        """What these settings and indicators need."""
+        codes = {one.needs.standard for one in of if one.needs.standard}
+        return cls(
+            settings.years,
+            {area.code: area.parent for area in tree if area.parent},
+            PopulationYear.parse(codes.pop()) if codes else None,
+        )
+
+
 def load(
-    session: Session, collection: str, number: int, wanted: Iterable[PopulationYear]
-) -> dict[PopulationYear, Loaded]:
-    """Panels of those population-years that the edition holds; the others are left out.
+    session: Session,
+    collection: str,
+    number: int,
+    wanted: Iterable[PopulationYear | Shared],
+    beside: Beside = Beside(),
+) -> "Found":
+    """Panels of those population-years that the edition holds; the others are left out, those too
+    of which it lacks one of the years to be pooled. One statement.
 
     Persons take their first-year rule from women and men where it holds both.
     """
     asked = tuple(dict.fromkeys(wanted))
-    sexes = {one.sex for one in asked}
+    wholes: dict[PopulationYear | Shared, PopulationYear | None] = {
+        one: _whole(one, beside) for one in asked if isinstance(one, PopulationYear)
+    }
+    pools = {one: _pool(one, beside.years) for one in (*asked, *wholes.values()) if one}
+    standard = _pool(beside.standard, 1) if beside.standard else None
+    everyone = [*pools.values(), *([standard] if standard else [])]
+    cells = _cells(session, collection, number, everyone)
+    found = {one: _assembled(cells, pool) for one, pool in pools.items()}
+    weights = _assembled(cells, standard) if standard else None
+    return {
+        one: _with(own, found[whole] if whole else None, weights)
+        for one in asked
+        if (own := found[one]) is not None
+        for whole in (wholes.get(one),)
+    }
+
+
+Found = dict[PopulationYear | Shared, Loaded]
+
+
+class _Pool(NamedTuple):
+    """Whose counts are summed, over which years."""
+
+    area: str
+    sex: str
+    periods: tuple[str, ...]
+
+
+def _pool(one: "PopulationYear | Shared", years: int) -> _Pool:
+    if isinstance(one, Shared):
+        return _Pool(one.area, one.sex, one.periods)
+    return _Pool(one.area, one.sex, span(one.period, years))
+
+
+def _whole(one: PopulationYear, beside: Beside) -> PopulationYear | None:
+    parent = beside.parents.get(one.area, "")
+    return replace(one, area=parent) if parent else None
+
+
+def _cells(session: Session, collection: str, number: int, pools: Sequence[_Pool]) -> Cells:
+    sexes = {pool.sex for pool in pools}
     if "p" in sexes:
         sexes |= {"f", "m"}
-    cells = schedules.load(
+    return schedules.load(
         session,
         collection,
         number,
         Selection(
-            areas=tuple(sorted({one.area for one in asked})),
+            areas=tuple(sorted({pool.area for pool in pools})),
             sexes=tuple(sorted(sexes)),
-            periods=tuple(sorted({one.period for one in asked})),
+            periods=tuple(sorted({period for pool in pools for period in pool.periods})),
             measures=MEASURES,
         ),
     )
-    found = ((one, _assembled(cells, one)) for one in asked)
-    return {one: loaded for one, loaded in found if loaded is not None}
 
 
-def _assembled(cells: dict[Key, Vector], wanted: PopulationYear) -> Loaded | None:
-    own = _single(cells, wanted)
-    if wanted.sex != "p":
+def _with(own: Loaded, whole: Loaded | None, standard: Loaded | None) -> Loaded:
+    """The panel with those beside it, on its grid."""
+    panel = own.panel
+    others = {"whole": whole, "standard": standard}
+    beside: dict[str, Any] = {
+        name: _on(other.panel, panel.grid) for name, other in others.items() if other is not None
+    }
+    return replace(own, panel=replace(panel, **beside))
+
+
+def _on(other: Panel, grid: AgeGrid) -> Panel | None:
+    """Another panel on this grid; None where its groups are coarser."""
+    return other.regroup(grid) if set(grid.starts) <= set(other.grid.starts) else None
+
+
+def _assembled(cells: Cells, pool: _Pool) -> Loaded | None:
+    own = _summed(cells, pool)
+    if pool.sex != "p":
         return own
-    women, men = (_single(cells, replace(wanted, sex=sex)) for sex in ("f", "m"))
+    women, men = (_summed(cells, pool._replace(sex=sex)) for sex in ("f", "m"))
     if women is None or men is None:
         return own
     together = Panel.persons(women.panel, men.panel)
     if own is None:
-        return Loaded(together, _status((women.status, men.status)), None)
+        return Loaded(together, _status((women.status, men.status)))
     # the counts of persons may hold deaths of unknown sex: only the first-year rule is taken over
+    births = np.where(np.isnan(own.panel.births), together.births, own.panel.births)
     mix = {name: getattr(together, name) for name in ("infant_weight", "infant_ratio")}
-    return replace(own, panel=replace(own.panel, **mix))
+    return replace(own, panel=replace(own.panel, births=births, **mix))
 
 
-def _single(cells: dict[Key, Vector], wanted: PopulationYear) -> Loaded | None:
-    deaths, years, births = (
-        cells.get(Key(wanted.area, wanted.sex, wanted.period, measure)) for measure in MEASURES
+def _summed(cells: Cells, pool: _Pool) -> Loaded | None:
+    parts = [_single(cells, pool, period) for period in pool.periods]
+    found = [part for part in parts if part is not None]
+    if len(found) < len(parts):
+        return None
+    if len(found) == 1:
+        return found[0]
+    status = _status([part.status for part in found])
+    return Loaded(Panel.pooled([part.panel for part in found]), status)
+
+
+def _single(cells: Cells, pool: _Pool, period: str) -> Loaded | None:
+    deaths, years, *births = (
+        cells.get(Key(pool.area, pool.sex, period, measure)) for measure in MEASURES
     )
     if deaths is None or years is None:
         return None
@@ -145,13 +247,10 @@ def _single(cells: dict[Key, Vector], wanted: PopulationYear) -> Loaded | None:
         grid,
         deaths.grid.regroup(deaths.values, grid),
         years.grid.regroup(years.values, grid),
-        sex=wanted.sex,
+        sex=pool.sex,
     )
-    return Loaded(
-        panel,
-        _status((deaths.status, years.status)),
-        None if births is None else float(births.values.sum()),
-    )
+    counted = [np.nan if one is None else float(one.values.sum()) for one in births]
+    return Loaded(replace(panel, births=np.array(counted)), _status((deaths.status, years.status)))
 
 
 def _status(parts: Sequence[str]) -> str:
@@ -159,22 +258,23 @@ def _status(parts: Sequence[str]) -> str:
 
 
 def overlap(
-    this: PopulationYear, that: PopulationYear, tree: Iterable[Area]
-) -> PopulationYear | None:
-    """The population-year whose deaths are counted in both, None where they share none.
+    this: PopulationYear, that: PopulationYear, tree: Iterable[Area], years: int = 1
+) -> Shared | None:
+    """The counts that are part of both, None where they share none.
 
-    They overlap in the same period, where one area is or lies within the other and the sexes are
-    equal or one is persons.
+    They overlap in the years both pool, where one area is or lies within the other and the sexes
+    are equal or one is persons.
     """
     parents = {area.code: area.parent for area in tree}
-    if this.period != that.period:
+    both = set(span(this.period, years)) & set(span(that.period, years))
+    if not both:
         return None
     if "p" not in (this.sex, that.sex) and this.sex != that.sex:
         return None
     sex = that.sex if this.sex == "p" else this.sex
     for inner, outer in ((this.area, that.area), (that.area, this.area)):
         if outer in _lineage(inner, parents):
-            return PopulationYear(inner, sex, this.period)
+            return Shared(inner, sex, tuple(sorted(both)))
     return None
 
 

@@ -9,11 +9,12 @@ from engine import settings as named
 from engine.ages import Array
 from engine.chain import Chain, run
 from engine.estimates import Estimate, Reason
-from engine.settings import Settings
-from server.results.estimating import USUAL, differences, estimates, stream
-from server.results.loading import Holdings, Loaded, holdings, load
+from engine.settings import Settings, span
+from server.results.estimating import EVERY, differences, estimates, stream
+from server.results.loading import Beside, Found, Holdings, Loaded, holdings, load
 from server.results.questions import PopulationYear, PopulationYearQuestion
 from server.results.revision import Moved, moved
+from server.sentences import names
 from server.store.connect import Session
 from server.store.heading import Heading
 
@@ -26,13 +27,14 @@ class Before:
 
     of: PopulationYear
     loaded: Loaded
+    period: str  # the year, or the years added up
     estimates: dict[str, Estimate]
     change: dict[str, Estimate]  # the year asked for less the one before, on the grid they share
 
 
 @dataclass(frozen=True, slots=True)
 class Findings:
-    """One population-year, read in every usual way."""
+    """One population-year, read in every way."""
 
     heading: Heading
     holdings: Holdings
@@ -49,6 +51,11 @@ class Findings:
     @property
     def of(self) -> PopulationYear:
         return self.question.of
+
+    @property
+    def period(self) -> str:
+        """The year, or the years added up."""
+        return names.years(span(self.of.period, self.settings.years))
 
     @property
     def readable(self) -> bool:
@@ -69,14 +76,15 @@ class Findings:
 def population_year(
     session: Session, heading: Heading, question: PopulationYearQuestion
 ) -> Findings:
-    """Load it and the year before, and read off every usual indicator. NotInEdition."""
+    """Load it and the year before, and read off every indicator. NotInEdition."""
     collection, number = heading.collection.code, heading.edition.number
     settings = named.find(question.settings)
     held = holdings(session, collection, number)
     held.require(question.of)
-    previous = held.previous(question.of)
+    previous = held.previous(question.of, settings.years)
     wanted = [question.of, *([previous] if previous else [])]
-    loaded = load(session, collection, number, wanted)
+    beside = Beside.of(settings, held.areas)
+    loaded = load(session, collection, number, wanted, beside)
     if question.of not in loaded:
         raise held.lacks(question.of)
     panel = loaded[question.of].panel
@@ -88,7 +96,7 @@ def population_year(
         settings=settings,
         loaded=loaded[question.of],
         chain=chain,
-        estimates=estimates(USUAL, panel, settings, stream(collection, question.of)),
+        estimates=estimates(EVERY, panel, settings, stream(collection, question.of)),
         before=_before(collection, question.of, previous, loaded, settings),
         rises=ageing.rises(panel, level=settings.level),
         gain=sensitivity.gain_per_percent(indicators.find("e0"), chain),
@@ -96,6 +104,7 @@ def population_year(
             session,
             heading,
             [question.of],
+            beside,
             lambda newer: _life_expectancy(newer.get(question.of), settings),
         ),
     )
@@ -105,7 +114,7 @@ def _before(
     collection: str,
     of: PopulationYear,
     previous: PopulationYear | None,
-    loaded: dict[PopulationYear, Loaded],
+    loaded: Found,
     settings: Settings,
 ) -> Before | None:
     if previous is None or previous not in loaded:
@@ -115,9 +124,10 @@ def _before(
     return Before(
         previous,
         loaded[previous],
-        estimates(USUAL, that, settings, stream(collection, previous)),
+        names.years(span(previous.period, settings.years)),
+        estimates(EVERY, that, settings, stream(collection, previous)),
         differences(
-            USUAL,
+            EVERY,
             this.regroup(grid),
             that.regroup(grid),
             settings,

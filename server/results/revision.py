@@ -4,7 +4,7 @@ import datetime as dt
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 
-from server.results.loading import Loaded, load
+from server.results.loading import Beside, Found, Shared, load
 from server.results.questions import PopulationYear
 from server.store import editions
 from server.store.connect import Session
@@ -27,8 +27,9 @@ class Moved:
 def moved(
     session: Session,
     heading: Heading,
-    wanted: Iterable[PopulationYear],
-    headline: Callable[[dict[PopulationYear, Loaded]], float],
+    wanted: Iterable[PopulationYear | Shared],
+    beside: Beside,
+    headline: Callable[[Found], float],
 ) -> Moved | None:
     """None where no edition newer than the heading's stands.
 
@@ -39,5 +40,5 @@ def moved(
     newer = editions.find(session, heading.collection.code, heading.newest)
     if newer is None:
         return None
-    held = load(session, heading.collection.code, newer.number, wanted)
+    held = load(session, heading.collection.code, newer.number, wanted, beside)
     return Moved(newer.number, newer.made, headline(held))

@@ -1,7 +1,7 @@
 """One indicator through the years, for chosen areas and sexes: the trend's numbers."""
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TypeVar
 
 import numpy as np
@@ -15,7 +15,18 @@ from engine.indicators import Indicator
 from engine.panel import Panel
 from engine.settings import Settings
 from server.results.estimating import stream
-from server.results.loading import Holdings, Loaded, NotInEdition, holdings, load
+from server.results.loading import (
+    Beside,
+    Found,
+    Holdings,
+    Loaded,
+    NotInEdition,
+    Shared,
+    holdings,
+    load,
+    overlap,
+    shared_part,
+)
 from server.results.questions import PopulationYear, TrendQuestion
 from server.results.revision import Moved, moved
 from server.sentences.numbers import whole
@@ -67,14 +78,20 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
     lines, periods = _in_tree_order(held, question), _periods(held, question)
     wanted = [PopulationYear(*line, period) for line in lines for period in periods]
     _require(held, question, wanted, indicator)
-    loaded = load(session, heading.collection.code, heading.edition.number, wanted)
-    collection = heading.collection.code
+    collection, number = heading.collection.code, heading.edition.number
+    beside = Beside.of(settings, held.areas, indicator)
+    loaded = load(session, collection, number, wanted, beside)
     estimate = _by_grid(collection, wanted, loaded, indicator, settings)[
         np.arange(len(wanted)).reshape(len(lines), len(periods))
     ]
     ends = tuple(_ends(row, periods) for row in estimate.value)
     middle = tuple(_middle(row, periods) for row in estimate.value)
-    changes = _changes(collection, lines, _spans(ends, middle), loaded, indicator, settings)
+    asked = _asked(lines, _spans(ends, middle), settings.years)
+    overlaps = {one.shared for one in asked if one and one.shared}
+    loaded |= load(session, collection, number, overlaps) if overlaps else {}
+    changes = _changes(collection, asked, loaded, indicator, settings)[
+        np.arange(len(asked)).reshape(3, len(lines))
+    ]
     found = [loaded.get(one) for one in wanted]
     headline = PopulationYear(*lines[0], _newest(estimate.value[0], periods))
     return Series(
@@ -98,6 +115,7 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
             session,
             heading,
             [headline],
+            beside,
             lambda newer: _figure(newer.get(headline), indicator, settings),
         ),
     )
@@ -148,7 +166,7 @@ def _require(
 def _by_grid(
     collection: str,
     wanted: list[PopulationYear],
-    loaded: dict[PopulationYear, Loaded],
+    loaded: Found,
     indicator: Indicator,
     settings: Settings,
 ) -> Estimate:
@@ -163,9 +181,7 @@ def _by_grid(
     return _scattered(grids, read)
 
 
-def _stacked(
-    ones: Sequence[PopulationYear], loaded: dict[PopulationYear, Loaded], grid: AgeGrid
-) -> Panel:
+def _stacked(ones: Sequence[PopulationYear], loaded: Found, grid: AgeGrid) -> Panel:
     return Panel.stack([loaded[one].panel.regroup(grid) for one in ones])
 
 
@@ -231,38 +247,73 @@ def _spans(ends: tuple[Span, ...], middle: tuple[str, ...]) -> tuple[tuple[Span,
     )
 
 
+@dataclass(frozen=True, slots=True)
+class _Change:
+    """Two years of a line, and the years that both pool."""
+
+    last: PopulationYear
+    first: PopulationYear
+    shared: Shared | None
+
+
+def _asked(
+    lines: tuple[tuple[str, str], ...], spans: tuple[tuple[Span, ...], ...], years: int
+) -> list[_Change | None]:
+    """The changes of every span and line, one after the other; None where a line has none."""
+    found: list[_Change | None] = []
+    for row in spans:
+        for line, span in zip(lines, row, strict=True):
+            if span is None:
+                found.append(None)
+                continue
+            first, last = (PopulationYear(*line, period) for period in span)
+            found.append(_Change(last, first, overlap(last, first, (), years)))
+    return found
+
+
 def _changes(
     collection: str,
-    lines: tuple[tuple[str, str], ...],
-    spans: tuple[tuple[Span, ...], ...],
-    loaded: dict[PopulationYear, Loaded],
+    asked: list[_Change | None],
+    loaded: Found,
     indicator: Indicator,
     settings: Settings,
 ) -> Estimate:
-    """The last year of each span less the first, [span, line], each pair on the grid it shares."""
-    asked = [(line, span) for row in spans for line, span in zip(lines, row, strict=True)]
+    """The last year of each less the first, [asked], each pair on the grid it shares."""
 
     def read(grid: AgeGrid, places: list[int]) -> Estimate:
-        chosen = [(line, span) for line, span in (asked[at] for at in places) if span]
-        last, first = (
-            [PopulationYear(*line, span[end]) for line, span in chosen] for end in (1, 0)
-        )
+        chosen = [one for at in places if (one := asked[at])]
+        last, first = ([getattr(one, end) for one in chosen] for end in ("last", "first"))
+        this, that = (_stacked(side, loaded, grid) for side in (last, first))
         return indicators.difference(
             indicator,
-            _stacked(last, loaded, grid),
-            _stacked(first, loaded, grid),
+            this,
+            that,
             settings,
+            shared=_counted_in_both(chosen, loaded, this, that),
             streams=(_codes(collection, last), _codes(collection, first)),
         )
 
-    def shared_grid(line: tuple[str, str], span: Span) -> AgeGrid | None:
-        if span is None:
+    def shared_grid(one: _Change | None) -> AgeGrid | None:
+        if one is None:
             return None
-        first, last = (loaded[PopulationYear(*line, period)].panel.grid for period in span)
-        return first.common(last)
+        return loaded[one.last].panel.grid.common(loaded[one.first].panel.grid)
 
-    found = _scattered([shared_grid(*one) for one in asked], read)
-    return found[np.arange(len(asked)).reshape(len(spans), len(lines))]
+    return _scattered([shared_grid(one) for one in asked], read)
+
+
+def _counted_in_both(
+    chosen: Sequence[_Change], loaded: Found, this: Panel, that: Panel
+) -> Panel | None:
+    """What pooled years share; nothing where no two of them do."""
+    if not any(one.shared for one in chosen):
+        return None
+    parts = [
+        this[at].over(np.zeros_like)
+        if one.shared is None
+        else shared_part(loaded[one.shared].panel, this[at], that[at])
+        for at, one in enumerate(chosen)
+    ]
+    return Panel.stack([replace(part, whole=None, standard=None) for part in parts])
 
 
 def _rows(flat: list[T], width: int) -> tuple[tuple[T, ...], ...]:

@@ -70,6 +70,18 @@ def few_person_years(lived: float, settings: Settings, who: str = "") -> Told:
     )
 
 
+def pooled(settings: Settings) -> Told:
+    """Of points in time: that each stands for several years."""
+    if settings.years == 1:
+        return None
+    return _("Years added up"), _(
+        "A figure stands for the year named and the {count} before it, whose deaths and"
+        " person-years are added up: what happens in one year is spread over {all}.",
+        count=settings.years - 1,
+        all=settings.years,
+    )
+
+
 def no_deaths(ages: Sequence[str]) -> Told:
     if not ages:
         return None

@@ -22,15 +22,27 @@ def indicator(one: Indicator) -> Facts:
 
 def interval(one: Indicator) -> str:
     """Whether it is smooth, what follows from it, and why it is not where it is not."""
-    if one.smooth:
+    kind = one.unit.limits
+    if kind == "count":
         return _(
-            "Smooth: from its slope in every death rate (delta method), deaths taken as Poisson. "
-            "Differences are shared out over ages."
+            "Exact: a count, taken as Poisson, over births taken as known. {why}",
+            why=_(one.why_not_smooth),
         )
+    if not one.smooth:
+        return _(
+            "Not smooth, so by simulation, deaths drawn as Poisson; the ages' shares of a "
+            "difference by replacing the rates one by one. {why}",
+            why=_(one.why_not_smooth),
+        )
+    ways = {
+        "mixed": _("by the gamma laws of the deaths that raise it and of those that lower it"),
+        "part": _("by the gamma law, within 0 and the whole"),
+        "gamma": _("by the gamma law, exact where every death weighs the same"),
+    }
     return _(
-        "Not smooth, so by simulation, deaths drawn as Poisson; differences are not shared out "
-        "over ages. {why}",
-        why=_(one.why_not_smooth),
+        "Smooth: {way}, from its slope in every death rate, deaths taken as Poisson. Differences "
+        "are shared out over ages.",
+        way=ways[kind],
     )
 
 
@@ -39,6 +51,18 @@ def needs(one: Indicator) -> str:
     wants = one.needs
     parts = [_("enough person-years")]
     parts += [_("an age group that begins at {age}", age=age) for age in wants.ages if age]
+    parts += [
+        {
+            "live": _("live births"),
+            "stillborn": _("stillbirths"),
+            "neonatal_deaths": _("deaths before 28 days"),
+        }[name]
+        for name in wants.births
+    ]
+    if wants.whole:
+        parts.append(_("a larger area of which the area is part"))
+    if wants.least_deaths:
+        parts.append(_("at least {count} deaths", count=wants.least_deaths))
     if wants.open_small:
         parts.append(_("an open age group that few reach, or that a fitted law spreads"))
     if wants.open_deaths:

@@ -32,6 +32,15 @@ def population_first(code: str, area: str) -> str:
     }[code]
 
 
+def years(periods: Sequence[str]) -> str:
+    """The years whose counts are added up, as one.
+
+    >>> years(("2014",)), years(("2012", "2013", "2014"))
+    ('2014', '2012–2014')
+    """
+    return periods[0] if len(periods) == 1 else f"{periods[0]}–{periods[-1]}"
+
+
 def sex_and_year(code: str, period: str) -> str:
     """As a label: women 2012."""
     return _("{sex} {year}", sex=sex(code), year=period)

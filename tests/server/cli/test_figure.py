@@ -92,7 +92,7 @@ def test_a_withdrawn_edition_says_so_beside_its_figures(ebbline: Ebbline, isle: 
 @pytest.mark.parametrize(
     ("words", "sentence"),
     [
-        (("xx",), "The key “of” has the value “xx”; it can be e0, e65, median"),
+        (("xx",), "The key “of” has the value “xx”; it can be e0, e65,"),
         (("e0", "--collection", "reef"), "There is no collection reef; known: isle."),
         (("e0", "--edition", "7"), "There is no edition 7; known: 1."),
         (("e0", "--edition", "0"), "There is no edition 0; known: 1."),

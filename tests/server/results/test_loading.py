@@ -2,6 +2,7 @@
 
 from collections.abc import Callable
 from contextlib import AbstractContextManager
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -9,7 +10,15 @@ from numpy.testing import assert_array_equal
 
 from engine.ages import AgeGrid
 from engine.panel import Panel
-from server.results.loading import NotInEdition, holdings, load, overlap, shared_part
+from server.results.loading import (
+    Beside,
+    NotInEdition,
+    Shared,
+    holdings,
+    load,
+    overlap,
+    shared_part,
+)
 from server.results.questions import PopulationYear
 from server.store.connect import Session
 from server.store.records import Area
@@ -139,7 +148,10 @@ def test_one_statement_however_many_are_asked(
     ],
 )
 def test_the_overlap_of_two(this: str, that: str, both: str | None) -> None:
-    expected = None if both is None else of(both)
+    expected = None
+    if both is not None:
+        shared = of(both)
+        expected = Shared(shared.area, shared.sex, (shared.period,))
     assert overlap(of(this), of(that), TREE) == expected
     assert overlap(of(that), of(this), TREE) == expected
 
@@ -151,3 +163,67 @@ def test_no_more_deaths_are_shared_than_either_counts(isle: Session) -> None:
     assert_array_equal(shared_part(loaded[part].panel, outer, inner).deaths, inner.deaths)
     fewer = gompertz_panel(people=1_000).regroup(SHORT)
     assert_array_equal(shared_part(loaded[part].panel, fewer, inner).deaths, fewer.deaths)
+
+
+@pytest.mark.parametrize(
+    ("years", "this", "that", "both"),
+    [
+        (3, "2014", "2012", ("2012",)),
+        (3, "2014", "2013", ("2012", "2013")),
+        (3, "2014", "2011", None),
+        (5, "2014", "2014", ("2010", "2011", "2012", "2013", "2014")),
+    ],
+)
+def test_pooled_years_overlap_in_those_that_both_pool(
+    years: int, this: str, that: str, both: tuple[str, ...] | None
+) -> None:
+    expected = None if both is None else Shared("north", "f", both)
+    assert overlap(of(f"north.f.{this}"), of(f"isle.p.{that}"), TREE, years) == expected
+
+
+def test_pooled_years_are_sums_and_a_year_that_is_lacking_leaves_them_out(isle: Session) -> None:
+    wanted = [of(f"north.{sex}.{year}") for sex in "fmp" for year in ("2013", "2014")]
+    single = load(isle, "isle", 1, wanted)
+    pooled = load(isle, "isle", 1, wanted, Beside(years=2))
+    assert {one.code for one in pooled} == {f"north.{sex}.2014" for sex in "fmp"}  # type: ignore[union-attr]
+    for sex in "fmp":
+        first, last = (single[of(f"north.{sex}.{year}")].panel for year in ("2013", "2014"))
+        together = pooled[of(f"north.{sex}.2014")]
+        assert_array_equal(together.panel.deaths, first.deaths + last.deaths)
+        assert_array_equal(together.panel.exposure, first.exposure + last.exposure)
+        assert together.status == "provisional"
+    women, men = (pooled[of(f"north.{sex}.2014")].panel for sex in "fm")
+    persons = pooled[of("north.p.2014")].panel
+    assert_array_equal(persons.infant_weight, Panel.persons(women, men).infant_weight)
+    shared = load(isle, "isle", 1, [Shared("north", "m", ("2013", "2014"))], Beside(years=5))
+    assert_array_equal(next(iter(shared.values())).panel.deaths, men.deaths)
+
+
+def test_the_whole_and_the_standard_stand_beside_on_the_own_grid(isle: Session) -> None:
+    north, south, standard = of("north.m.2014"), of("south.m.2014"), of("north.p.2013")
+    beside = Beside(parents={"north": "isle", "south": "isle"}, standard=standard)
+    loaded = load(isle, "isle", 1, [north, south, of("isle.m.2014")], beside)
+    whole = loaded[of("isle.m.2014")].panel
+    assert whole.whole is None
+    assert loaded[south].panel.whole is not None
+    assert_array_equal(loaded[south].panel.whole.deaths, whole.deaths)
+    assert loaded[north].panel.whole is None  # the whole ends at 85, the north at 100
+    people = loaded[south].panel.standard
+    assert people is not None
+    plain = load(isle, "isle", 1, [standard])[standard].panel
+    assert_array_equal(people.exposure, plain.regroup(SHORT).exposure)
+
+
+def test_births_are_loaded_as_handed_in_and_persons_have_both_sexes(session: Session) -> None:
+    women, men = (
+        replace(gompertz_panel(sex=sex), births=births)
+        for sex, births in (
+            ("f", np.array([900.0, 4.0, 3.0])),
+            ("m", np.array([1000.0, np.nan, 2.0])),
+        )
+    )
+    edition(session, {"north.f.2014": women, "north.m.2014": men})
+    loaded = load(session, "isle", 1, [of(f"north.{sex}.2014") for sex in "fmp"])
+    for sex, expected in (("f", women.births), ("m", men.births)):
+        assert_array_equal(loaded[of(f"north.{sex}.2014")].panel.births, expected)
+    assert_array_equal(loaded[of("north.p.2014")].panel.births, [1900.0, np.nan, 5.0])

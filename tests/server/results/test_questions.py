@@ -112,10 +112,18 @@ def test_what_cannot_be_read_says_what_can(
         PopulationYearQuestion.parse(items)
 
 
+def test_two_ratios_to_a_whole_are_not_compared() -> None:
+    pair = [("this", "a.f.2014"), ("that", "b.f.2014")]
+    with pytest.raises(BadValue, match=r"two of them do not compare.*asr_esp2013"):
+        ComparisonQuestion.parse([*pair, ("of", "smr")])
+    assert ComparisonQuestion.parse([*pair, ("of", "asr_esp2013")]).of == "asr_esp2013"
+    assert TrendQuestion.parse([("of", "smr")]).of == "smr"
+
+
 @pytest.mark.parametrize(
     ("items", "words"),
     [
-        ([("of", "e0e")], "can be e0, e65, median"),
+        ([("of", "e0e")], "can be e0, e65,"),
         ([("area", "a b")], "1 to 32 letters"),
         ([("sex", "w")], "can be f, m, p"),
         ([("from", "99")], "four digits"),
