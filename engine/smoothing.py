@@ -21,6 +21,7 @@ PENALTIES = 10.0 ** np.arange(-1.0, 6.5, 0.5)  # from the nearly unsmoothed to a
 ORDER = 2  # of the differences that are penalised
 STEPS = 60  # of Fisher scoring; rows that settle leave earlier, 4 to 8 are usual
 SETTLED = 1e-7  # a step so short is the last: the next would be about its square
+NEAR = 1e-4  # the same while penalties are compared
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,6 +31,7 @@ class Design:
     size: int
     first: Places  # [point]
     local: Array  # [point, 4]
+    layers: Places  # [layer, segment], a point between two knots, or -1 where there is none further
 
     def along(self, coefficients: Array) -> Array:
         """The curve at the ages: [coefficient, row] -> [point, row]."""
@@ -41,18 +43,28 @@ class Design:
     def back(self, values: Array) -> Array:
         """sum_x B_x v_x: [point, row] -> [coefficient, row]."""
         found = np.zeros((self.size, values.shape[1]), values.dtype)
-        for k, splines, v in zip(self.first, self.local, values, strict=True):
-            found[k : k + 4] += splines[:, None] * v
+        segments = self._by_segment(self.local, values)
+        for i in range(4):
+            found[i : i + len(segments)] += segments[:, i]
         return found
 
     def gram(self, weight: Array) -> Array:
         """Diagonals of sum_x w_x B_x B_x': [point, row] -> [4, coefficient, row]."""
         bands = np.zeros((4, self.size, weight.shape[1]), weight.dtype)
-        i, j = np.triu_indices(4)
-        pairs = self.local[:, i] * self.local[:, j]
-        for k, products, w in zip(self.first, pairs, weight, strict=True):
-            bands[j - i, k + i] += products[:, None] * w
+        left, right = np.triu_indices(4)
+        segments = self._by_segment(self.local[:, left] * self.local[:, right], weight)
+        for pair, (i, j) in enumerate(zip(left, right, strict=True)):
+            bands[j - i, i : i + len(segments)] += segments[:, pair]
         return bands
+
+    def _by_segment(self, factors: Array, values: Array) -> Array:
+        """Factors times values, summed over the points between two knots: [point, k] and [point,
+        row] -> [segment, k, row]. One point of every segment at a time: few steps, each large."""
+        factors = np.vstack([factors, np.zeros_like(factors[:1])])  # for segments without a point
+        found = np.zeros((self.size - 3, factors.shape[1], values.shape[1]), values.dtype)
+        for points in self.layers:
+            found += factors[points][:, :, None] * values[points][:, None, :]
+        return found
 
     def form(self, bands: Array) -> Array:
         """B_x' A B_x: [4, coefficient, row] -> [point, row]."""
@@ -78,10 +90,14 @@ class Basis:
 
     def at(self, ages: Array) -> Design:
         place = (np.asarray(ages) - self.low) * self.segments / (self.high - self.low)
-        first = np.clip(np.floor(place), 0, self.segments - 1)
+        first = np.clip(np.floor(place), 0, self.segments - 1).astype(np.intp)
         u = place - first
         values = ((1 - u) ** 3, 3 * u**3 - 6 * u**2 + 4, 3 * (u + u**2 - u**3) + 1, u**3)
-        return Design(self.size, first.astype(np.intp), np.stack(values, axis=-1) / 6)
+        order = np.argsort(first, kind="stable")
+        depth = np.arange(len(order)) - np.searchsorted(first[order], first[order])
+        layers = np.full((depth.max(initial=0) + 1, self.segments), -1)
+        layers[depth, first[order]] = order
+        return Design(self.size, first, np.stack(values, axis=-1) / 6, layers)
 
 
 @dataclass(frozen=True, slots=True)
@@ -191,26 +207,24 @@ def fit(
     Shape:   ages [age], deaths, exposure [..., age], `start` broadcasts -> curves [...].
     Missing: nan in, nan out; an age with exposure of 0 has no weight; no deaths at all gives nan.
     """
+    exposure = np.broadcast_to(exposure, deaths.shape)
     if start is None:
         tried = fit_each(basis, ages, np.real(deaths), np.real(exposure))
         with np.errstate(all="ignore"):
             score = tried.bic
         start = _taken(tried, np.argmin(np.where(np.isnan(score), np.inf, score), axis=-1))
-        if not np.iscomplexobj(deaths):
-            return start
     return _settled(ages, deaths, exposure, start)
 
 
 def fit_each(basis: Basis, ages: Array, deaths: Array, exposure: Array) -> Fit:
-    """The fit with each of PENALTIES: [..., age] -> fits [..., penalty]."""
+    """The fit with each of PENALTIES, near enough to compare: [..., age] -> fits [..., penalty]."""
+    begin = _first_smooth(basis, ages, deaths, exposure)[..., None, :]
     shape = (*deaths.shape[:-1], len(PENALTIES))
     deaths, exposure = (
-        np.broadcast_to(counts[..., None, :], (*shape, len(ages)))
-        for counts in (deaths, np.broadcast_to(exposure, deaths.shape))
+        np.broadcast_to(counts[..., None, :], (*shape, len(ages))) for counts in (deaths, exposure)
     )
-    begin = _first_smooth(basis, ages, deaths[..., 0, :], exposure[..., 0, :])[..., None, :]
     start = Curve(basis, begin, np.broadcast_to(PENALTIES, shape))
-    return _settled(ages, deaths, exposure, start)
+    return _settled(ages, deaths, exposure, start, settled=NEAR)
 
 
 def posterior_curves(tried: Fit, deaths: Array, noise: Array) -> Curve:
@@ -269,10 +283,11 @@ def _first_smooth(basis: Basis, ages: Array, deaths: Array, exposure: Array) -> 
     return begin.T.reshape(*deaths.shape[:-1], basis.size)
 
 
-def _settled(ages: Array, deaths: Array, exposure: Array, start: Curve) -> Fit:
+def _settled(
+    ages: Array, deaths: Array, exposure: Array, start: Curve, settled: float = SETTLED
+) -> Fit:
     """Fisher scoring at the penalty of `start` until each row's coefficients stand still."""
     batch, basis = deaths.shape[:-1], start.basis
-    exposure = np.broadcast_to(exposure, deaths.shape)
     penalty = np.array(np.broadcast_to(start.penalty, batch))
     kind = np.result_type(deaths, exposure, start.coefficients)
     found = _rows(np.broadcast_to(start.coefficients, (*batch, basis.size))).astype(kind)
@@ -280,10 +295,12 @@ def _settled(ages: Array, deaths: Array, exposure: Array, start: Curve) -> Fit:
     design, left = basis.at(ages), np.arange(found.shape[1])
     with np.errstate(all="ignore"):  # rows that cannot be fitted end as nan
         for _ in range(STEPS):
-            old = found[:, left]
-            new = _step(design, counts[:, left], years[:, left], weight[left], old)
-            found[:, left] = new
-            left = left[np.max(np.abs(new - old), axis=0) > SETTLED]  # nan rows stay nan
+            part = slice(None) if left.size == len(weight) else left  # no copy of the whole
+            old = found[:, part]
+            new = _step(design, counts[:, part], years[:, part], weight[part], old)
+            moved = np.max(np.abs(new - old), axis=0)
+            found[:, part] = new
+            left = left[moved > settled]  # nan rows stay nan
             if not left.size:
                 break
         if np.iscomplexobj(found):  # an imaginary part settles one step behind its real part
