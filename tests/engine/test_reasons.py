@@ -8,23 +8,25 @@ import pytest
 from engine.ages import AgeGrid
 from engine.chain import run
 from engine.estimates import Reason
-from engine.indicators import INDICATORS, estimate, find
+from engine.indicators import INDICATORS, estimate, estimates, find
 from engine.panel import Panel
 from engine.settings import SETTINGS
-from tests.factories import GRIDS, gompertz_panel
+from tests.factories import GRIDS, complete, gompertz_panel
 
 PLAIN, LAW = SETTINGS["almanac-1"], SETTINGS["almanac-1-gompertz"]
 SPREAD = {key for key, one in INDICATORS.items() if one.needs.open_small}
 CLOSED = {key for key, one in INDICATORS.items() if one.needs.open_deaths}
-SOUND = gompertz_panel(people=5e6)
+OVER_BIRTHS = {key for key, one in INDICATORS.items() if one.needs.births}
+OF_A_WHOLE = {key for key, one in INDICATORS.items() if one.needs.whole}
+WEIGHED = {key for key, one in INDICATORS.items() if one.needs.least_deaths}
+SOUND = complete(gompertz_panel(people=5e6))
 EARLY_END = AgeGrid((0, 1, *range(5, 91, 5)))
 
 
 def reasons(panel: Panel, settings=PLAIN) -> dict[str, Reason]:
-    return {
-        key: Reason(int(estimate(indicator, panel, settings, streams=np.array("isle")).reason))
-        for key, indicator in INDICATORS.items()
-    }
+    few = replace(settings, draws=40)
+    found = estimates(list(INDICATORS.values()), panel, few, streams=np.array("isle"))
+    return {key: Reason(int(one.reason)) for key, one in found.items()}
 
 
 def only(panel: Panel, reason: Reason, settings=PLAIN) -> set[str]:
@@ -89,8 +91,8 @@ def test_nobody_in_the_first_year_of_life() -> None:
 
 
 def test_no_deaths_at_all() -> None:
-    nobody = replace(SOUND, deaths=0 * SOUND.deaths)
-    assert only(nobody, Reason.NO_DEATHS) == set(INDICATORS)
+    nobody = replace(SOUND, deaths=0 * SOUND.deaths, births=SOUND.births * [1, 1, 0])
+    assert only(nobody, Reason.NO_DEATHS) == set(INDICATORS) - OVER_BIRTHS
 
 
 def test_no_deaths_in_the_span_of_the_ageing_rate() -> None:
@@ -141,3 +143,59 @@ def test_death_rates_that_no_law_fits() -> None:
     falling = replace(SOUND, deaths=np.where(old, SOUND.exposure * 0.05, SOUND.deaths))
     falling.deaths[-2] /= 3
     assert only(falling, Reason.NO_LAW, LAW) == CLOSED | SPREAD
+
+
+def test_births_that_were_not_handed_in() -> None:
+    assert {"imr", "nmr", "pnmr", "sbr"} == OVER_BIRTHS
+    for place, hit in enumerate((OVER_BIRTHS, {"sbr"}, {"nmr", "pnmr"})):
+        births = np.where(np.arange(3) == place, np.nan, SOUND.births)
+        assert only(replace(SOUND, births=births), Reason.NO_BIRTHS) == hit
+
+
+def test_an_area_that_is_part_of_none() -> None:
+    assert {"smr", "isr"} == OF_A_WHOLE
+    assert only(replace(SOUND, whole=None), Reason.NO_WHOLE) == OF_A_WHOLE
+    for name in ("deaths", "exposure"):
+        counts = getattr(SOUND.whole, name).copy()
+        counts[7] = np.nan
+        whole = replace(SOUND.whole, **{name: counts})
+        assert only(replace(SOUND, whole=whole), Reason.NO_WHOLE) == OF_A_WHOLE
+    nobody_at_0 = replace(SOUND.whole, exposure=SOUND.whole.exposure * (np.arange(22) > 0))
+    assert only(replace(SOUND, whole=nobody_at_0), Reason.NO_WHOLE) == OF_A_WHOLE
+
+
+def test_a_standard_that_is_not_held() -> None:
+    weighed = find("asr_by_isle.p.2010")
+    assert estimate(weighed, SOUND, PLAIN).reason == Reason.NONE
+    lacking = SOUND.standard.exposure.copy()
+    lacking[3] = np.nan
+    empty = replace(SOUND.standard, exposure=0 * SOUND.standard.exposure)
+    for standard in (None, replace(SOUND.standard, exposure=lacking), empty):
+        got = estimate(weighed, replace(SOUND, standard=standard), PLAIN)
+        assert got.reason == Reason.NO_STANDARD
+        assert np.isnan(got.value)
+
+
+def test_fewer_deaths_than_a_number_needs() -> None:
+    least = {INDICATORS[key].needs.least_deaths for key in WEIGHED}
+    assert least == {10}
+    share = np.zeros(len(SOUND.grid))
+    share[[0, 12, 15, -1]] = 1, 2, 3, 4
+    for deaths, hit in ((10, set()), (9, WEIGHED)):
+        some = replace(SOUND, deaths=share * deaths / 10)
+        found = reasons(some)
+        assert {key for key, why in found.items() if why is Reason.TOO_FEW_DEATHS} == hit
+
+
+def test_no_deaths_at_all_leave_a_rate_over_births() -> None:
+    nobody = replace(SOUND, deaths=0 * SOUND.deaths, births=SOUND.births * [1, 1, 0])
+    got = estimate(find("imr"), nobody, PLAIN)
+    assert (got.value, got.low, got.reason) == (0, 0, Reason.NONE)
+    assert got.high > 0
+
+
+def test_what_must_be_mended_first_is_named() -> None:
+    bare = gompertz_panel(people=4_000)
+    assert estimate(find("smr"), bare, PLAIN).reason == Reason.TOO_FEW_PERSON_YEARS
+    holed = replace(bare, deaths=bare.deaths * np.nan)
+    assert estimate(find("smr"), holed, PLAIN).reason == Reason.NOT_AVAILABLE

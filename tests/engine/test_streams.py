@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from engine.streams import generator, poisson_draws
+from engine.streams import generator, normal_draws, poisson_draws
 
 
 def first(*key: str) -> int:
@@ -56,3 +56,14 @@ def test_a_missing_count_stays_missing_and_leaves_the_others() -> None:
 def test_one_code_for_each_population() -> None:
     with pytest.raises(ValueError, match=r"streams have shape \(2,\) but the populations \(3,\)"):
         poisson_draws(np.ones((3, 5)), np.array(["a", "b"]), 10, "draws")
+
+
+def test_normal_numbers_go_by_the_code_alone() -> None:
+    names = np.array([["isle.f.2001", "isle.m.2001"], ["cape.f.2001", "isle.f.2001"]])
+    found = normal_draws(names, 2000, "example")
+    assert found.shape == (2000, 2, 2)
+    assert np.array_equal(found[:, 0, 0], found[:, 1, 1])
+    assert np.array_equal(found[:, 0, 1], normal_draws(names[0, 1], 2000, "example"))
+    assert abs(np.corrcoef(found[:, 0, 0], found[:, 0, 1])[0, 1]) < 0.1
+    assert found.mean() == pytest.approx(0, abs=0.06)
+    assert found.std() == pytest.approx(1, abs=0.05)

@@ -5,7 +5,6 @@ from dataclasses import fields, replace
 import numpy as np
 import pytest
 from numpy.testing import assert_allclose, assert_array_equal
-from scipy.special import ndtr
 from scipy.stats import chi2
 
 from engine.chain import gradient, run
@@ -14,7 +13,6 @@ from engine.estimates import Estimate, Reason
 from engine.indicators import INDICATORS, difference, differences, estimate, estimates, find
 from engine.panel import Panel
 from engine.settings import SETTINGS, Settings
-from engine.simulation import quantiles
 from engine.streams import poisson_draws
 from tests.factories import GRIDS, codes, complete, gompertz_panel
 
@@ -136,45 +134,6 @@ def test_shared_deaths_narrow_a_simulated_difference_as_they_narrow_a_delta_one(
         drawn = difference(stepped, part, whole, many, shared=shared, streams=names)
         width = (drawn.high - drawn.low) / (delta.high - delta.low)
         assert width == pytest.approx(1, abs=0.06)
-
-
-def test_simulated_limits_do_not_depend_on_how_they_are_cut_into_blocks() -> None:
-    slopes = np.linspace(0.09, 0.11, 9)
-    panel = gompertz_panel(seed=1, slope=slopes, level=0.1 / np.exp(86 * slopes))
-    many = replace(SETTINGS_1, draws=900)  # two populations to a block
-    together = estimate(MEDIAN, panel, many, streams=codes(panel))
-    alone = [estimate(MEDIAN, panel[i], many, streams=codes(panel)[i]) for i in range(9)]
-    assert_array_equal(together.low, [one.low for one in alone])
-
-
-def test_limits_are_quantiles_by_rank_and_stand_if_few_draws_fail() -> None:
-    rng = np.random.default_rng(0)
-    values = rng.normal(size=(400, 4))
-    values[:4, 1], values[:5, 2], values[:, 3] = np.nan, np.nan, np.nan
-    got = quantiles(values, 0.95)
-    for column in (0, 1):
-        known = values[~np.isnan(values[:, column]), column]
-        expected = np.quantile(known, [0.025, 0.975], method="weibull")
-        assert_allclose(got[:, column], expected, rtol=1e-12)
-    assert np.isnan(got[:, 2:]).all()  # five in four hundred are too many
-
-
-@pytest.mark.parametrize("draws", [40, 400])
-def test_a_further_draw_falls_within_the_limits_as_often_as_the_level_says(draws: int) -> None:
-    values = np.random.default_rng(1).normal(size=(draws, 20_000))
-    low, high = quantiles(values, 0.95)
-    assert np.mean(ndtr(high) - ndtr(low)) == pytest.approx(0.95, abs=0.001)
-
-
-def test_where_the_peak_is_often_lost_the_value_stands_without_an_interval() -> None:
-    # people so long-lived that the peak is just below the open age
-    grid = GRIDS["abridged"]
-    panel = gompertz_panel(grid, level=0.1 / np.exp(99.7 * 0.1), people=200_000, accidents=0)
-    modelled = SETTINGS["almanac-1-gompertz"]
-    got = estimate(MODE, panel, modelled, streams=codes(panel))
-    assert 95 < got.value < 100
-    assert np.isnan(got.low)
-    assert got.reason == Reason.OFTEN_LOST
 
 
 def test_without_streams_a_number_that_is_not_smooth_has_no_interval() -> None:
