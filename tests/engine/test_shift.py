@@ -81,6 +81,15 @@ def test_populations_that_differ_in_one_thing(law: Law, part: str, name: str) ->
 
 
 @pytest.mark.fast
+def test_a_steeper_fall_after_birth_counts_with_the_infants() -> None:
+    this, that = population(SILER, decline=3.0), population(SILER)
+    found = shift_squeeze(this, that, PLAIN, law=SILER)
+    expected = life_expectancy(SILER, decline=3.0) - life_expectancy(SILER)
+    assert expected > 0.1
+    np.testing.assert_allclose(values(found, PARTS), [0, 0, 0, expected], atol=1e-6)
+
+
+@pytest.mark.fast
 @LAWS
 def test_parts_and_rest_add_up_and_change_sides(law: Law) -> None:
     one, other = population(law, **OTHER), population(law)
