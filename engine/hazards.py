@@ -39,6 +39,12 @@ class Law:
         """Of the parameters, in the order of their axis."""
         return tuple(name for term in self.terms for name in term.names)
 
+    @property
+    def bounded(self) -> dict[int, Term]:
+        """The terms that may be 0 at best, by the position of their level."""
+        first = [self.position(term.names[0]) for term in self.terms]
+        return {j: term for j, term in zip(first, self.terms, strict=True) if not term.direction}
+
     def position(self, name: str) -> int:
         """Of a parameter; ValueError where the law has none of this name."""
         if name not in self.names:
@@ -125,7 +131,7 @@ def local(law: Law, groups: Groups, parameters: Array) -> Local:
             curves[j + 1, j] = heights[j + 1]
             curves[j + 1, j + 1] = height * (lean * lean + turn)
         else:
-            height = np.exp(level) * _share(groups, term.until)
+            height = np.exp(level) * share(groups, term.until)
             heights.append(height)
         curves[j, j] = height
         h = h + height
@@ -171,7 +177,7 @@ def _sinhc(u: Array) -> tuple[Array, Array, Array]:
     return logs, first, second
 
 
-def _share(groups: Groups, until: float) -> Array:
+def share(groups: Groups, until: float) -> Array:
     """Part of each group below an age; of a point, all or nothing."""
     if np.isinf(until):
         return np.ones_like(groups.middles)

@@ -29,8 +29,9 @@ from engine.hazards import (
     grouped,
     local,
     points,
+    share,
 )
-from engine.likelihood import Flags, Rows, climb, information, solve, total
+from engine.likelihood import Flags, Rows, Top, climb, information, solve, total
 
 __all__ = [
     "GOMPERTZ",
@@ -53,8 +54,9 @@ MIDDLE_AGE = 40.0  # from here the rising term stands nearly alone: where its se
 class Fit:
     """A fitted law; parameters are nan where none could be fitted.
 
-    `at_bound` marks a background held at 0, whose parameter is minus infinity: the likelihood falls
-    as it leaves 0. It counts as known in the variances of the others.
+    `at_bound` marks a rate held at 0 (the background, or the excess of the first year), whose
+    parameter is minus infinity: the likelihood falls as it leaves 0. It counts as known in the
+    variances of the others.
     """
 
     law: Law
@@ -107,7 +109,7 @@ class Fit:
         found = self.information
         free = ~(self.at_bound[..., None] | self.at_bound[..., None, :])
         with np.errstate(all="ignore"):
-            columns = [solve(found, unit)[0] for unit in np.eye(len(self.law.names))]
+            columns = [solve(found, unit).values for unit in np.eye(len(self.law.names))]
             return np.where(free, np.stack(columns, axis=-1), 0.0)
 
     @property
@@ -166,7 +168,7 @@ class Fit:
         with np.errstate(all="ignore"):
             here = local(self.law, self.groups, self.parameters)
             matrix = information(here, self.deaths, self.exposure, self.at_bound)
-            to, _ = solve(matrix, np.where(self.at_bound, 0.0, g))
+            to = solve(matrix, np.where(self.at_bound, 0.0, g)).values
             moved = sum(to[..., j, None] * part for j, part in enumerate(here.relative))
             return np.where(self.exposure == 0, 0.0, moved)
 
@@ -183,8 +185,8 @@ def fit(
     widths the rate is the hazard at `ages`: good for old ages in single years, and not for the
     first year of life, in which it falls steeply.
 
-    The best background may be 0, which has no logarithm. Where no maximum is found inside, it is
-    held at 0 if the likelihood falls as it leaves 0, and marked.
+    The best background may be 0, which has no logarithm, and so may be the excess of the first year
+    where no infant died: the rate is then held at 0 and marked.
 
     Shape:   ages, widths [age] (middles of closed groups); deaths, exposure [..., age].
     Missing: nan where a count is nan, where fewer ages have person-years than the law has
@@ -201,9 +203,11 @@ def fit(
     thinning = np.broadcast_to(groups.thinning, deaths.shape)
     rows = Rows(law, replace(groups, thinning=_flat(thinning)), _flat(deaths), _flat(exposure))
     with np.errstate(all="ignore"):
-        parameters, at_bound = _best(rows)
+        top = _best(rows)
     shape = (*deaths.shape[:-1], len(law.names))
-    return Fit(law, groups, deaths, exposure, parameters.reshape(shape), at_bound.reshape(shape))
+    return Fit(
+        law, groups, deaths, exposure, top.parameters.reshape(shape), top.held.reshape(shape)
+    )
 
 
 def _flat(values: Array) -> Array:
@@ -211,25 +215,16 @@ def _flat(values: Array) -> Array:
     return np.ascontiguousarray(values.reshape(rows, values.shape[-1]))
 
 
-def _best(rows: Rows) -> tuple[Array, Flags]:
-    """The maximum inside; where there is none, that with the background held at 0, if the
-    likelihood falls as it leaves 0. With what is at its bound, both [row, parameter]."""
+def _best(rows: Rows) -> Top:
+    """The greatest likelihood; nan where a term was held at 0 though it rises as that leaves 0."""
     law, start = rows.law, _start(rows)
-    at_bound = np.zeros(start.shape, bool)
-    found = _proper(law, climb(rows, start, at_bound))
-    lost, begun = np.isnan(np.real(found[:, 0])), ~np.isnan(np.real(start[:, 0]))
-    again = np.flatnonzero(lost & begun)
-    if "background" not in law.names or not len(again):
-        return found, at_bound
-    background = law.position("background")
-    start[again, background] = -np.inf
-    at_bound[again, background] = True
-    some = rows[again]
-    without = _proper(law, climb(some, start[again], at_bound[again]))
-    leaving = total(some.deaths / local(law, some.groups, without).mu - some.exposure)
-    found[again] = np.where(np.real(leaving)[:, None] <= 0, without, np.nan)
-    at_bound &= ~np.isnan(np.real(found[:, :1]))
-    return found, at_bound
+    top = climb(rows, start, np.zeros(start.shape, bool))
+    found = _proper(law, top.parameters)
+    spare = rows.deaths / local(law, rows.groups, found).mu - rows.exposure
+    for j, term in law.bounded.items():
+        rises = np.real(total(spare * share(rows.groups, term.until))) > 0
+        found = np.where((rises & top.held[:, j])[:, None], np.nan, found)
+    return Top(found, top.held & ~np.isnan(np.real(found)))
 
 
 def _proper(law: Law, parameters: Array) -> Array:
@@ -270,7 +265,8 @@ def _start_of_terms(rows: Rows, rising: dict[str, Array]) -> dict[str, Array]:
     deaths, exposure = np.real(rows.deaths), np.real(rows.exposure)
     old = middles >= min(MIDDLE_AGE, float(np.median(middles)))
     alone = Rows(GOMPERTZ, rows.groups, np.where(old, deaths, 0.0), np.where(old, exposure, 0.0))
-    found = climb(alone, np.stack(list(rising.values()), axis=-1), np.zeros((len(deaths), 2), bool))
+    begin = np.stack(list(rising.values()), axis=-1)
+    found = climb(alone, begin, np.zeros(begin.shape, bool)).parameters
     level, slope = (
         np.where(found[:, 1] > 0, found[:, j], rising[name])
         for j, name in enumerate(("level", "slope"))

@@ -1,7 +1,7 @@
 """The greatest Poisson likelihood of a law, by Newton's steps, many populations at once."""
 
 from dataclasses import dataclass, replace
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,7 +16,7 @@ STEPS = 200
 LONGEST_STEP = 2.0  # change of the logarithm of a rate; keeps Newton from running away
 CLOSE = 1e-8  # a step so short is followed by one last full one
 SLACK = 1e-11  # by this part of its terms a log likelihood may fall from rounding
-VANISHED = -30.0  # logarithm of a background that is on its way to 0
+VANISHED = -30.0  # logarithm of a rate that is on its way to 0, and is held there from here on
 FIRST_DAMPING, LEAST_DAMPING, MOST_DAMPING = 1e-2, 1e-3, 1e12
 
 
@@ -44,18 +44,26 @@ class _Place:
     bend: Array  # minus its second one, or the expectation of that where the true one misleads
 
 
-def climb(rows: Rows, start: Array, held: Flags) -> Array:
+class Top(NamedTuple):
+    """Where the likelihood is greatest, each [row, parameter]."""
+
+    parameters: Array
+    held: Flags  # at its start, or at 0
+
+
+def climb(rows: Rows, start: Array, held: Flags) -> Top:
     """The parameters of greatest likelihood, each row for itself, `held` ones kept at their start.
 
     Newton's steps (Fisher's where the log likelihood is not bent downwards), shortened where they
     are long and damped after one that led down (Levenberg's way). Near the top they are full, so
-    that counts with an imaginary part carry it through exactly.
+    that counts with an imaginary part carry it through exactly. The rate of a term that the steps
+    shrink to nothing is set to 0, its logarithm to minus infinity, and held.
 
     Shape:   start, held [row, parameter] -> the same.
     Missing: a start of nan is not followed; nan where the steps do not settle.
     Source:  Fletcher (1987), Practical Methods of Optimization, chapters 3 and 5.
     """
-    found = np.full(start.shape, np.nan, start.dtype)
+    found, held = np.full(start.shape, np.nan, start.dtype), held.copy()
     moving = np.flatnonzero(~np.isnan(np.real(start)).any(axis=-1))
     place = _place(rows[moving], start[moving], held[moving])
     damping = np.zeros(len(moving))
@@ -63,14 +71,14 @@ def climb(rows: Rows, start: Array, held: Flags) -> Array:
         if not len(moving):
             break
         part, fixed = rows[moving], held[moving]
-        step, _ = solve(place.bend * _more(damping, start.shape[-1]), place.score)
+        step = solve(place.bend * _more(damping, start.shape[-1]), place.score).values
         size = _size(rows, place.at, step)
         brake = np.minimum(1.0, LONGEST_STEP / size)[:, None]
         ahead = _place(part, _moved(place.at, brake * step, fixed), fixed)
         slack = SLACK * (np.abs(place.height) + total(np.real(part.deaths)))
         up = ahead.height >= place.height - slack
         done = up & (size < CLOSE) & (damping == 0)
-        last, _ = solve(ahead.bend[done], ahead.score[done])
+        last = solve(ahead.bend[done], ahead.score[done]).values
         found[moving[done]] = _moved(ahead.at[done], last, fixed[done])
         place = _chosen(up, ahead, place)
         damping = np.where(
@@ -78,11 +86,14 @@ def climb(rows: Rows, start: Array, held: Flags) -> Array:
             np.where(damping > LEAST_DAMPING, damping / 10, 0.0),
             10 * damping + FIRST_DAMPING,
         )
+        gone = _vanished(rows.law, place.at, fixed)
+        if gone.any():
+            held[moving] |= gone
+            place = _place(part, np.where(gone, -np.inf, place.at), fixed | gone)
         going = ~done & np.isfinite(size) & (damping < MOST_DAMPING)
-        going &= ~_vanished(rows.law, place.at, fixed)
         moving, damping = moving[going], damping[going]
         place = _Place(*(getattr(place, name)[going] for name in _Place.__slots__))
-    return found
+    return Top(found, held)
 
 
 def information(here: Local, deaths: Array, exposure: Array, held: Flags) -> Array:
@@ -120,12 +131,17 @@ def _symmetric(triangle: list[list[Array]], held: Flags) -> Array:
     return np.where(held[..., None] | held[..., None, :], np.eye(k), matrix)
 
 
-def solve(matrix: Array, right: Array) -> tuple[Array, Flags]:
+class Solution(NamedTuple):
+    values: Array  # [..., k]
+    positive: Flags  # [...], whether the matrix is positive definite
+
+
+def solve(matrix: Array, right: Array) -> Solution:
     """The solution for each population, and whether its symmetric matrix is positive definite:
     elimination without pivots, entry by entry, so that no population meets another and one without
     a solution stops no other.
 
-    Shape:   matrix [..., k, k], right [..., k], which broadcast -> [..., k] and [...].
+    Shape:   matrix [..., k, k], right [..., k], which broadcast -> [...].
     """
     k = matrix.shape[-1]
     a = [[matrix[..., i, j] for j in range(k)] for i in range(k)]
@@ -142,7 +158,7 @@ def solve(matrix: Array, right: Array) -> tuple[Array, Flags]:
         for j in range(i + 1, k):
             b[i] = b[i] - a[i][j] * b[j]
         b[i] = b[i] / a[i][i]
-    return np.stack(b, axis=-1), positive
+    return Solution(np.stack(b, axis=-1), positive)
 
 
 def total(values: Array) -> Array:
@@ -158,7 +174,7 @@ def _place(rows: Rows, at: Array, held: Flags) -> _Place:
     score = np.stack([total(residual * part) for part in here.relative], axis=-1)
     height = total(xlogy(np.real(deaths), np.real(here.mu)) - np.real(exposure * here.mu))
     bend = information(here, deaths, exposure, held)
-    _, down = solve(bend, score)
+    down = solve(bend, score).positive
     if not down.all():
         bend = np.where(down[:, None, None], bend, _expected(here, exposure, held))
     return _Place(at, height, np.where(held, 0.0, score), bend)
@@ -192,7 +208,6 @@ def _size(rows: Rows, at: Array, step: Array) -> Array:
 
 
 def _vanished(law: Law, at: Array, held: Flags) -> Flags:
-    if "background" not in law.names:
-        return np.zeros(len(at), bool)
-    j = law.position("background")
-    return np.asarray((np.real(at[:, j]) < VANISHED) & ~held[:, j])
+    """Terms that may be 0 and have come close to it, [row, parameter]."""
+    bounded = np.isin(np.arange(len(law.names)), list(law.bounded))
+    return np.asarray((np.real(at) < VANISHED) & bounded & ~held)

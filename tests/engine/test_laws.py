@@ -240,6 +240,24 @@ def test_a_background_that_is_best_at_0_is_held_there(law: Law) -> None:
 
 
 @pytest.mark.fast
+def test_an_excess_of_the_first_year_that_is_best_at_0_is_held_there() -> None:
+    """The law is then the one without infants, or without both."""
+    deaths, exposure = expected(MAKEHAM)
+    deaths[0] = 0.0
+    few = without_background(MAKEHAM)[0]
+    few[0] = 0.0
+    found = fit(MAKEHAM_INFANT, AGES, np.stack([deaths, few]), exposure, widths=WIDTHS)
+    assert found.at_bound.tolist() == [[False, False, False, True], [False, False, True, True]]
+    for row, (law, counts) in enumerate(((MAKEHAM, deaths), (GOMPERTZ, few))):
+        without = fit(law, AGES, counts, exposure, widths=WIDTHS)
+        size = len(law.names)
+        np.testing.assert_allclose(found.parameters[row, :size], without.parameters, rtol=1e-9)
+        np.testing.assert_allclose(found.se[row, :size], without.se, rtol=1e-9)
+        assert np.isneginf(found.parameters[row, size:]).all()
+        assert found.aic[row] == pytest.approx(float(without.aic))
+
+
+@pytest.mark.fast
 def test_infant_deaths_without_a_best_decline_leave_no_siler_law() -> None:
     """Danish men of 2012: the likelihood grows with the decline for ever, towards infants' deaths
     all in the first year; the law with those has its maximum there."""
@@ -255,7 +273,7 @@ def test_infant_deaths_without_a_best_decline_leave_no_siler_law() -> None:
     for decline in (2.0, 5.0, 10.0, 30.0):
         level, slope, background, infant = infants.parameters
         start = np.array([[level, slope, background, infant + np.log(decline), decline]])
-        best = climb(rows, start, np.array([[False, False, False, False, True]]))
+        best = climb(rows, start, np.array([[False, False, False, False, True]])).parameters
         deviances.append(float(replace(siler, parameters=best[0]).deviance))
     assert (np.diff(deviances) < 0).all()
     assert deviances[-1] == pytest.approx(float(infants.deviance), rel=1e-6)

@@ -50,7 +50,7 @@ def rows(deaths: np.ndarray = DEATHS) -> Rows:
 @pytest.mark.parametrize("start", [(-2.0, 0.1), (3.0, 0.1), (-20.0, 0.4), (-2.0, -0.3)])
 def test_the_top_is_found_from_afar(start: tuple[float, float]) -> None:
     with np.errstate(all="ignore"):
-        found = climb(rows(), np.array([start]), np.zeros((1, 2), bool))
+        found = climb(rows(), np.array([start]), np.zeros((1, 2), bool)).parameters
     np.testing.assert_allclose(found[0], TRUTH, rtol=1e-11)
 
 
@@ -61,7 +61,7 @@ def test_a_search_begun_at_the_top_still_carries_imaginary_parts() -> None:
     step = np.zeros(DEATHS.shape)
     step[0, 7] = 1.0
     start = TRUTH[None].astype(complex) + 4e-10
-    found = climb(rows(DEATHS + 1e-30j * step), start, np.zeros((1, 2), bool))
+    found = climb(rows(DEATHS + 1e-30j * step), start, np.zeros((1, 2), bool)).parameters
     z = AGES - 80
     information = np.array([[DEATHS.sum(), (DEATHS * z).sum()], [0, (DEATHS * z * z).sum()]])
     information[1, 0] = information[0, 1]
@@ -72,6 +72,6 @@ def test_a_search_begun_at_the_top_still_carries_imaginary_parts() -> None:
 @pytest.mark.fast
 def test_a_held_parameter_stays() -> None:
     with np.errstate(all="ignore"):
-        found = climb(rows(), np.array([[-2.0, 0.08]]), np.array([[False, True]]))
+        found = climb(rows(), np.array([[-2.0, 0.08]]), np.array([[False, True]])).parameters
     level = np.log(DEATHS.sum() / (YEARS * np.exp(0.08 * (AGES - 80))).sum())
     np.testing.assert_allclose(found[0], [level, 0.08], rtol=1e-11)
