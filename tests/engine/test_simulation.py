@@ -10,9 +10,10 @@ from scipy.special import ndtr
 from engine.estimates import Reason
 from engine.indicators import INDICATORS, estimate
 from engine.settings import SETTINGS
-from engine.simulation import drawn, quantiles, spread
+from engine.simulation import corrected, drawn, quantiles, spread
 from tests.factories import GRIDS, codes, gompertz_panel
 
+TAILS = np.array([[0.025], [0.975]])
 SETTINGS_1 = SETTINGS["almanac-1"]
 E0, MODE, MEDIAN = INDICATORS["e0"], INDICATORS["mode"], INDICATORS["median"]
 
@@ -30,7 +31,7 @@ def test_limits_are_quantiles_by_rank_and_stand_if_few_draws_fail() -> None:
     rng = np.random.default_rng(0)
     values = rng.normal(size=(400, 4))
     values[:4, 1], values[:5, 2], values[:, 3] = np.nan, np.nan, np.nan
-    got = quantiles(values, 0.95)
+    got = quantiles(values, TAILS)
     for column in (0, 1):
         known = values[~np.isnan(values[:, column]), column]
         expected = np.quantile(known, [0.025, 0.975], method="weibull")
@@ -41,7 +42,7 @@ def test_limits_are_quantiles_by_rank_and_stand_if_few_draws_fail() -> None:
 @pytest.mark.parametrize("draws", [40, 400])
 def test_a_further_draw_falls_within_the_limits_as_often_as_the_level_says(draws: int) -> None:
     values = np.random.default_rng(1).normal(size=(draws, 20_000))
-    low, high = quantiles(values, 0.95)
+    low, high = quantiles(values, TAILS)
     assert np.mean(ndtr(high) - ndtr(low)) == pytest.approx(0.95, abs=0.001)
 
 
@@ -79,3 +80,33 @@ def test_an_error_of_the_population_moves_all_ages_of_a_table_alike() -> None:
     assert abs(np.corrcoef(logs, other)[0, 1]) < 0.15
     none = drawn([rate], panel, deaths, SETTINGS_1, np.array(["isle"]))["cdr"]
     assert np.ptp(none) == 0
+
+
+def test_draws_about_the_value_leave_their_own_percentiles() -> None:
+    values = np.linspace(-1, 1, 399)[:, None] ** 3
+    assert_allclose(corrected(values, np.zeros(1), 0.95), quantiles(values, TAILS), rtol=1e-9)
+
+
+def test_a_bias_of_the_draws_is_taken_to_be_that_of_the_value() -> None:
+    """Exact where value and draws are off by as much on some scale: here exp of a normal number
+    that is drawn 0.4 too low. The limits are then those of the unbiased number."""
+    rng = np.random.default_rng(5)
+    truth, bias = 1.3, -0.4
+    observed = truth + bias + rng.normal(size=4000)
+    values = np.exp(observed + bias + rng.normal(size=(999, 4000)))
+    low, high = corrected(values, np.exp(observed), 0.9)
+    assert np.mean(low > np.exp(truth)) == pytest.approx(0.05, abs=0.012)
+    assert np.mean(high < np.exp(truth)) == pytest.approx(0.05, abs=0.012)
+    plain = quantiles(values, np.array([[0.05], [0.95]]))
+    assert np.mean(plain[1] < np.exp(truth)) > 0.15
+
+
+def test_draws_equal_to_the_value_count_half_and_the_value_is_held() -> None:
+    values = np.repeat([80.0, 85.0, 90.0], [100, 200, 100])[:, None]
+    assert_array_equal(corrected(values, np.array([85.0]), 0.95)[:, 0], [80, 90])
+    for observed in (70.0, 95.0):
+        low, high = corrected(values, np.array([observed]), 0.95)[:, 0]
+        assert low <= observed <= high
+    lost = np.where(np.arange(400)[:, None] < 5, np.nan, values)
+    assert np.isnan(corrected(lost, np.array([85.0]), 0.95)).all()
+    assert np.isnan(corrected(values, np.array([np.nan]), 0.95)).all()
