@@ -1,6 +1,10 @@
 """Why a figure or its interval is missing, in words."""
 
+import numpy as np
+
+from engine.chance import cautious
 from engine.estimates import Reason
+from engine.indicator import Indicator
 from engine.settings import Settings
 from server.sentences.numbers import number, whole
 from server.sentences.text import _
@@ -67,3 +71,13 @@ def reason(code: int, settings: Settings) -> str:
         Reason.NOT_DECOMPOSED: _("No exact share of this difference belongs to an age."),
     }
     return sentences[Reason(code)]
+
+
+def caution(one: Indicator, person_years: float) -> str:
+    """What is said of an interval that is wider than its level; empty where it is not."""
+    if not cautious(one, np.array(person_years)):
+        return ""
+    return _(
+        "In a population this small few deaths may decide the figure, and its interval errs on the"
+        " safe side: it is wider than its level asks for, never narrower."
+    )

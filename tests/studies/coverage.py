@@ -13,6 +13,7 @@ import json
 import time
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import asdict, dataclass, replace
+from itertools import product
 from pathlib import Path
 
 import numpy as np
@@ -28,6 +29,19 @@ SIZES = (5_000, 20_000, 100_000, 1_000_000, 5_000_000)
 AGES = {key: GRIDS[key] for key in ("abridged", "single")}
 LAWS = {"poisson": 1.0, "overdispersed": 1.5}  # variance of a count over its mean
 AT_ONCE = 500  # replicates held in memory
+REPORT = """# How often intervals hold the truth
+
+By `python -m tests.studies.coverage`, 2026-12-01, settings almanac-2, women under one law of
+rates, intervals at 95 %. Smooth numbers and counts: 4,000 replicates (a figure is sure to about
+0.7); simulated ones 400 to 600 (to about 2), each of 400 draws. A cell has the per cent of
+intervals that hold the truth with abridged, then with single ages. In brackets, where one tail is
+more than 4 % and twice the other: wholly above the truth, wholly below it. After a minus sign, from
+5 % on: the per cent of populations without an interval.
+
+Overdispersed deaths have a variance half as large again as their mean. An interval allows for
+chance in Poisson deaths only, so it is then too narrow, by a factor of 1.22: it holds the truth in
+88 to 91 of 100.
+"""
 NEONATAL, STILLBORN = 0.7, 0.004  # of infant deaths; of births
 
 
@@ -126,22 +140,27 @@ def _coverage(
     )
 
 
-def table(found: Iterable[Coverage], *, ages: str, law: str) -> str:
-    """A line for each indicator, its coverage in per cent for each size; the two tails (truth below
-    and above the interval) where one is twice the other or more, and the share without interval
-    from 1 % on."""
-    rows: dict[str, dict[int, Coverage]] = {}
-    for one in found:
-        if (one.ages, one.law) == (ages, law):
-            rows.setdefault(one.indicator, {})[one.persons] = one
-    sizes = sorted({size for row in rows.values() for size in row})
+def report(found: Sequence[Coverage]) -> str:
+    """All tables, in the words of tests/studies/coverage.md."""
+    tables = (f"## {law.capitalize()} deaths\n\n{table(found, law)}\n" for law in LAWS)
+    return "\n".join((REPORT, *tables))
+
+
+def table(found: Iterable[Coverage], law: str) -> str:
+    """A line for each indicator, in the order of the registry, and a column for each size: the
+    coverage in per cent with abridged and with single ages."""
+    cells = {(one.indicator, one.persons, one.ages): one for one in found if one.law == law}
+    sizes = sorted({persons for _, persons, _ in cells})
     lines = [
         "| indicator | " + " | ".join(f"{size:,}" for size in sizes) + " |",
         "| --- |" + " --- |" * len(sizes),
     ]
-    for key, row in rows.items():
-        cells = (_cell(row[size]) if size in row else "" for size in sizes)
-        lines.append(f"| {key} | " + " | ".join(cells) + " |")
+    for key in [key for key in INDICATORS if key in {row for row, _, _ in cells}]:
+        row = (
+            "; ".join(_cell(cells[where]) for ages in AGES if (where := (key, size, ages)) in cells)
+            for size in sizes
+        )
+        lines.append(f"| {key} | " + " | ".join(row) + " |")
     return "\n".join(lines)
 
 
@@ -149,11 +168,11 @@ def _cell(one: Coverage) -> str:
     if np.isnan(one.covered):
         return "none"
     text = f"{100 * one.covered:.1f}"
-    tails = sorted((one.above, one.below))
-    if tails[1] > 0.03 and tails[1] >= 2 * tails[0]:
-        text += f" ({100 * one.above:.1f}, {100 * one.below:.1f})"
-    if one.without >= 0.01:
-        text += f"; {100 * one.without:.0f} % without"
+    fewer, more = sorted((one.above, one.below))
+    if more > max(0.04, 2 * fewer):
+        text += f" ({100 * one.above:.0f} {100 * one.below:.0f})"
+    if one.without >= 0.05:
+        text += f" -{100 * one.without:.0f}"
     return text
 
 
@@ -167,26 +186,29 @@ def main() -> None:
     asked.add_argument("--settings", default="almanac-1")
     asked.add_argument("--draws", type=int, default=400)
     asked.add_argument("--to", type=Path, help="a JSON file, added to if it is there")
+    asked.add_argument("--report", type=Path, help="a file for the tables of all that is in --to")
     choice = asked.parse_args()
     settings = replace(SETTINGS[choice.settings], draws=choice.draws)
     chosen = [INDICATORS[key] for key in choice.indicators]
     found: list[Coverage] = []
     if choice.to and choice.to.exists():
         found = [Coverage(**row) for row in json.loads(choice.to.read_text())]
-    for ages in choice.ages:
-        for law in choice.laws:
-            for persons in choice.sizes:
-                start = time.perf_counter()
-                got = list(measure(chosen, ages, persons, law, choice.replicates, settings))
-                again = {(ages, law, persons, one.indicator) for one in got}
-                found = [o for o in found if (o.ages, o.law, o.persons, o.indicator) not in again]
-                found += got
-                print(
-                    f"{ages}, {law}, {persons:,}: {time.perf_counter() - start:.0f} s", flush=True
-                )
-                if choice.to:
-                    choice.to.write_text(json.dumps([asdict(one) for one in found], indent=0))
-            print(f"\n{ages} ages, {law}\n\n{table(found, ages=ages, law=law)}\n", flush=True)
+    for ages, law, persons in product(choice.ages, choice.laws, choice.sizes):
+        start = time.perf_counter()
+        got = list(measure(chosen, ages, persons, law, choice.replicates, settings))
+        again = {(ages, law, persons, one.indicator) for one in got}
+        found = [one for one in found if place(one) not in again] + got
+        print(f"{ages}, {law}, {persons:,}: {time.perf_counter() - start:.0f} s", flush=True)
+        if choice.to:
+            choice.to.write_text(json.dumps([asdict(one) for one in found], indent=0))
+    text = report(found)
+    print(text)
+    if choice.report:
+        choice.report.write_text(text)
+
+
+def place(one: Coverage) -> tuple[str, str, int, str]:
+    return (one.ages, one.law, one.persons, one.indicator)
 
 
 if __name__ == "__main__":
