@@ -3,21 +3,25 @@
 from dataclasses import dataclass
 from typing import ClassVar
 
+from engine import decomposition, indicators
 from server.charts.chart import Chart
 from server.exports.table import Table
 from server.pages import comparison_charts as charts
+from server.pages import comparison_contributions as contributions
 from server.pages import comparison_tables as tables
 from server.pages import frames
-from server.pages.choices import Grouped, Offer, indicators, offer
+from server.pages.choices import Grouped, Offer, offer
+from server.pages.choices import indicators as offered
 from server.pages.page import Caution, Frame, Page
 from server.results.comparison import Comparison, comparison
+from server.results.explaining import decomposable
 from server.results.questions import (
     ComparisonQuestion,
     PopulationYear,
     PopulationYearQuestion,
     address,
 )
-from server.sentences import basis, names
+from server.sentences import basis, kinds, names
 from server.sentences import comparison as say
 from server.sentences import contributions as ages_say
 from server.sentences.pieces import Piece, Sentence, phrase
@@ -49,7 +53,9 @@ class ComparisonPage(Page):
     template: ClassVar[str] = "comparison/page.html"
     drawn: frozenset[str]  # keys of the pictures there are
     groups: tuple[tuple[str, str], ...]  # further tables of figures, and what each is about
-    not_parted: Sentence  # why H has no picture, where life expectancy has one
+    not_parted: tuple[Sentence, ...]  # what has no picture of contributions, and why
+    kinds: Sentence  # of change, from fitted laws; empty where none fits
+    ratios: tuple[Sentence, ...]  # how differences of ratios come about
     further: tuple[Sentence, ...]
     computed: tuple[Sentence, ...]
     basis: tuple[Sentence, ...]
@@ -72,7 +78,9 @@ def build(session: Session, heading: Heading, question: ComparisonQuestion) -> C
         twins=frames.twins(heading, question),
         drawn=frozenset(chart.key for chart in drawn),
         groups=tuple((table.key, table.title) for table in tables.further(found)),
-        not_parted=ages_say.not_parted(_why_not_parted(found)) if _why_not_parted(found) else (),
+        not_parted=_not_parted(found),
+        kinds=() if found.same else kinds.told(found.explained.kinds),
+        ratios=_ratios(found),
         further=_further(found),
         computed=_computed(found),
         basis=frames.basis(heading.edition.basis),
@@ -81,14 +89,16 @@ def build(session: Session, heading: Heading, question: ComparisonQuestion) -> C
 
 
 def _charts(found: Comparison, source: str) -> tuple[Chart, ...]:
-    made = (charts.survivors, charts.life_expectancy, charts.unevenness)
+    made = (charts.survivors, charts.asked_for, charts.life_expectancy, charts.unevenness)
     return tuple(chart for chart in (draw(found, source) for draw in made) if chart is not None)
 
 
 def _tables(found: Comparison) -> tuple[Table, ...]:
     made = [tables.figures(found), *tables.further(found)]
-    if found.contributions and not found.same:
-        made += [tables.contributions(found), tables.ages(found)]
+    if found.explained.contributions and not found.same:
+        made += [contributions.groups(found), contributions.ages(found)]
+    if kinds.told(found.explained.kinds) and not found.same:
+        made.append(contributions.kinds(found))
     return (*made, tables.survivors(found))
 
 
@@ -126,14 +136,44 @@ def _linked(found: Comparison, of: PopulationYear, words: str) -> Piece:
 
 def _lead(found: Comparison) -> tuple[Sentence, ...]:
     said: list[Sentence] = []
-    part, asked = found.contributions.get("e0"), charts.asked(found, "e0")
+    part, asked = found.explained.contributions.get("e0"), charts.asked(found, "e0")
     both = tables.pair(found)
     if found.same:
         return ()
+    said.append(_seen(found))
     if part is not None and asked.clear:
-        said.append(ages_say.carried(*charts.most(found, part), part.difference))
+        most = charts.most(found, part)
+        named = found.question.of != "e0"
+        said.append(ages_say.carried(*most, part.difference, named=named))
     said.append(say.evenness(both, charts.asked(found, "H")))
     return tuple(sentence for sentence in said if sentence)
+
+
+def _seen(found: Comparison) -> Sentence:
+    of = charts.asked(found, found.question.of)
+    return kinds.could_be_seen(of.indicator, of.difference, found.settings)
+
+
+def _ratios(found: Comparison) -> tuple[Sentence, ...]:
+    of, parts = found.explained, []
+    if found.same:
+        return ()
+    if of.unevenness is not None:
+        parts.append(kinds.unevenness(of.unevenness.first, of.unevenness.second))
+    if of.crude is not None:
+        parts.append(kinds.crude(of.crude.first, of.crude.second))
+    return tuple(parts)
+
+
+def _not_parted(found: Comparison) -> tuple[Sentence, ...]:
+    said, key = [], found.question.of
+    if _why_not_parted(found):
+        said.append(ages_say.not_parted(_why_not_parted(found)))
+    if not decomposable(indicators.find(key)) and not found.same:
+        one = indicators.find(key)
+        why = decomposition.NOT_DECOMPOSED.get(key) or one.why_not_smooth
+        said.append(ages_say.not_shared_out(one, _(why)))
+    return tuple(said)
 
 
 def _computed(found: Comparison) -> tuple[Sentence, ...]:
@@ -142,8 +182,10 @@ def _computed(found: Comparison) -> tuple[Sentence, ...]:
         name=Piece(_("Contributions."), emphasis="strong"),
         sentence=_(
             "They follow a straight line from one set of death rates to the other, so that they add"
-            " up to the difference before rounding (Horiuchi, Wilmoth and Pletcher, 2008); their"
-            " intervals are those of 200 simulated pairs. Arriaga’s formula stands beside them."
+            " up to the difference before rounding (Horiuchi, Wilmoth and Pletcher, 2008), with"
+            " intervals by the delta method; of a figure that is not smooth, from replacing the"
+            " counts age by age in both orders (Andreev, Shkolnikov and Begun, 2002), with 200"
+            " simulated pairs. Arriaga’s formula stands beside them."
         ),
     )
     return (*basis.computed(found.settings), path)
@@ -186,7 +228,7 @@ def _cautions(found: Comparison) -> tuple[Caution, ...]:
 
 def _why_not_parted(found: Comparison) -> str:
     """Why H has no contributions; empty where it has them, or nothing could differ."""
-    if "H" in found.contributions or found.same:
+    if "H" in found.explained.contributions or found.same:
         return ""
     return reason(int(found.difference["H"].reason), found.settings)
 
@@ -217,7 +259,7 @@ def _choice(found: Comparison) -> Choice:
         this=question.this,
         that=question.that,
         of=question.of,
-        indicators=indicators(question.of),
+        indicators=offered(question.of),
         figures=question.figures,
         settings=question.settings,
     )

@@ -8,9 +8,11 @@ from engine.indicators import find
 from server.charts.chart import At, Chart, Series
 from server.charts.scales import decimals as decimals_of
 from server.charts.scales import ticks
-from server.pages.comparison_tables import PRINTED, RADIX, pair
+from server.pages.comparison_contributions import Printed, printed
+from server.pages.comparison_tables import RADIX, pair
 from server.pages.drawing import LONGER_LIFE, WHOLE_LIFE, at_age, places, values
-from server.results.comparison import Comparison, Contribution, Side
+from server.results.comparison import Comparison, Side
+from server.results.explaining import DECOMPOSED, Contribution
 from server.sentences import comparison as say
 from server.sentences import contributions as ages_say
 from server.sentences.numbers import number
@@ -102,7 +104,7 @@ def _curve(
 
 
 def life_expectancy(found: Comparison, source: str) -> Chart | None:
-    part = found.contributions.get("e0")
+    part = found.explained.contributions.get("e0")
     if part is None or found.same:
         return None
     span, carried = most(found, part)
@@ -111,7 +113,7 @@ def life_expectancy(found: Comparison, source: str) -> Chart | None:
         found,
         part,
         key="by-age",
-        of="e0",
+        of=printed("e0"),
         finding=ages_say.by_age(asked(found, "e0"), span, carried),
         unit=_(
             "Years that each age group adds, {this} against {that}, with {level} % intervals;"
@@ -120,24 +122,22 @@ def life_expectancy(found: Comparison, source: str) -> Chart | None:
             that=both.that.whole,
             level=round(100 * found.settings.level),
         ),
-        title=_("years"),
-        decimals=2,
         source=source,
     )
 
 
 def unevenness(found: Comparison, source: str) -> Chart | None:
-    part = found.contributions.get("H")
+    part = found.explained.contributions.get("H")
     if part is None or found.same:
         return None
     age = turning(found, part)
     starts = np.array(found.groups.starts)
-    scaled = PRINTED["H"] * part.by_group
+    scaled = printed("H").scale * part.by_group
     return _bars(
         found,
         part,
         key="unevenness",
-        of="H",
+        of=printed("H"),
         finding=ages_say.unevenness(
             asked(found, "H"),
             float(scaled[starts < age].sum()),
@@ -149,8 +149,33 @@ def unevenness(found: Comparison, source: str) -> Chart | None:
             " intervals; hatched: against the rest",
             level=round(100 * found.settings.level),
         ),
-        title=_("thousandths of H"),
-        decimals=1,
+        source=source,
+    )
+
+
+def asked_for(found: Comparison, source: str) -> Chart | None:
+    """The indicator asked for, where it is neither of the two that always stand there."""
+    key = found.question.of
+    part = found.explained.contributions.get(key)
+    if key in DECOMPOSED or part is None or found.same:
+        return None
+    of, both = printed(key), pair(found)
+    span, carried = most(found, part)
+    return _bars(
+        found,
+        part,
+        key="asked",
+        of=of,
+        finding=ages_say.of_asked(asked(found, key), span, carried),
+        unit=_(
+            "What each age group adds to {label}, {this} against {that}, {unit}, with {level} %"
+            " intervals; hatched: against the rest",
+            label=of.label,
+            this=both.this.whole,
+            that=both.that.whole,
+            unit=of.unit,
+            level=round(100 * found.settings.level),
+        ),
         source=source,
     )
 
@@ -187,17 +212,15 @@ def _bars(
     part: Contribution,
     *,
     key: str,
-    of: str,
+    of: Printed,
     finding: str,
     unit: str,
-    title: str,
-    decimals: int,
     source: str,
 ) -> Chart:
     groups, (_first, top) = found.groups, axis(found)
     widths = np.append(groups.widths[:-1], min(10.0, top - groups.open_age))
     mids = np.array(groups.starts, float) + widths / 2
-    y, low, high = (PRINTED[of] * column for column in (part.by_group, part.low, part.high))
+    y, low, high = (of.scale * column for column in (part.by_group, part.low, part.high))
     bottom = min(0.0, float(np.nanmin(np.fmin(y, low))))
     ceiling = max(0.0, float(np.nanmax(np.fmax(y, high))))
     room = 0.06 * (ceiling - bottom)
@@ -213,7 +236,7 @@ def _bars(
         ),
         x_kind="age",
         x_range=axis(found),
-        y_title=title,
+        y_title=of.unit,
         y_range=(bottom - room if bottom < 0 else 0.0, ceiling + room),
         y_ticks=shown,
         y_text=tuple(
@@ -234,8 +257,8 @@ def _bars(
             ),
         ),
         foot_row=tuple(
-            (float(mid), number(float(value), decimals, signed=True))
+            (float(mid), number(float(value), of.decimals, signed=True))
             for mid, value in zip(mids, y, strict=True)
         ),
-        foot_sum=number(float(y.sum()), decimals, signed=True),
+        foot_sum=number(float(y.sum()), of.decimals, signed=True),
     )

@@ -1,27 +1,21 @@
 """The tables of a comparison page, from which its pictures and twins are made too."""
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Sequence
 
-import numpy as np
-
-from engine.ages import Array
 from engine.indicators import GROUPS, find
 from engine.settings import span
 from server.exports.table import Cell, Column, Row, Table
-from server.pages.cells import columns, gap, number, triple
+from server.pages.cells import columns, number, triple
 from server.pages.population_year_tables import what_it_counts, why_missing
-from server.results.comparison import DECOMPOSED, Comparison, Contribution, Side
+from server.results.comparison import Comparison, Side
 from server.results.estimating import COMPARED, USUAL
 from server.results.loading import Shared
 from server.results.questions import PopulationYear
 from server.sentences import comparison as say
-from server.sentences import contributions as ages_say
 from server.sentences import names
 from server.sentences.text import _
 
 RADIX = 100_000
-THOUSAND = 1_000  # contributions to H are printed in thousandths
-PRINTED = {"e0": 1, "H": THOUSAND}
 
 
 def named(found: Comparison, of: PopulationYear | Shared) -> say.Named:
@@ -110,124 +104,3 @@ def survivors(found: Comparison) -> Table:
         here, there = (RADIX * float(side.table.lx[at]) for side in (found.this, found.that))
         rows.append(Row((age, number(here), number(there), number(here - there))))
     return Table("survivors", _("Survivors to each age, of 100,000 born"), heads, tuple(rows))
-
-
-def contributions(found: Comparison) -> Table:
-    """What each age group adds to the differences in e0 and H, with the sums."""
-    heads = (
-        Column("age", _("age")),
-        *columns("e0", _("life expectancy"), 2, unit=_("years"), signed=True),
-        *columns("H", _("unevenness"), 1, unit=_("thousandths of H"), signed=True),
-    )
-    parts = [(found.contributions.get(key), PRINTED[key], key) for key in DECOMPOSED]
-    rows = []
-    for at, label in enumerate(found.groups.labels):
-        cells: list[Cell] = [label]
-        for part, scale, key in parts:
-            cells += _cells(found, part, scale, key, at)
-        rows.append(Row(tuple(cells)))
-    rows += _remainder_row(found)
-    total: list[Cell] = [_("sum: the difference")]
-    for part, scale, key in parts:
-        if part is None:
-            total += [_missing(found, key)] * 3
-            continue
-        limits = (found.difference[key].low, found.difference[key].high)
-        total += [scale * part.difference, *(number(scale * float(end)) for end in limits)]
-    return Table(
-        "contributions",
-        _("Contribution of each age to the differences"),
-        heads,
-        tuple(rows),
-        total=Row(tuple(total)),
-    )
-
-
-def _cells(
-    found: Comparison, part: Contribution | None, scale: float, key: str, at: int
-) -> Sequence[Cell]:
-    if part is None:
-        return [_missing(found, key)] * 3
-    return [number(scale * float(column[at])) for column in (part.by_group, part.low, part.high)]
-
-
-def _missing(found: Comparison, key: str) -> Cell:
-    return gap(int(found.difference[key].reason), found.settings)
-
-
-def _remainder_words(found: Comparison) -> str:
-    """What the row of its own for what no age accounts for is called; empty where it is not owed:
-    rounding is all there is."""
-    parts = found.contributions.values()
-    told = (ages_say.remainder(part.remainder, part.difference) for part in parts)
-    return next((words for words in told if words), "")
-
-
-def _remainder_row(found: Comparison) -> Iterable[Row]:
-    words, cells = _remainder_words(found), list[Cell]()
-    none = number(np.nan, _("no age, hence no interval"))
-    for key in DECOMPOSED:
-        part = found.contributions.get(key)
-        gone = _missing(found, key)
-        cells += [gone] * 3 if part is None else [PRINTED[key] * part.remainder, none, none]
-    return [Row((words, *cells))] if words else []
-
-
-def ages(found: Comparison) -> Table:
-    """Each age of the shared grid by itself; for e0 Arriaga's contributions stand beside."""
-    heads = (
-        Column("age", _("age")),
-        Column("e0", _("life expectancy"), _("years"), 3, signed=True),
-        Column("e0_arriaga", _("by Arriaga’s formula"), _("years"), 3, signed=True),
-        Column("H", _("unevenness"), _("thousandths of H"), 2, signed=True),
-    )
-    own = len(found.grid)
-    beside = np.append(found.arriaga[: own - 1], found.arriaga[own - 1 :].sum())
-    made: list[tuple[Array | None, float, str]] = [
-        (_by_age(found, "e0"), 1, "e0"),
-        (beside, 1, "e0"),
-        (_by_age(found, "H"), THOUSAND, "H"),
-    ]
-    rows = tuple(
-        Row((label, *(_one(found, column, scale, key, at) for column, scale, key in made)))
-        for at, label in enumerate(found.grid.labels)
-    )
-    left = [_left(found, "e0"), 0.0, _left(found, "H")]
-    sums = (
-        _missing(found, key) if column is None else scale * (float(column.sum()) + rest)
-        for (column, scale, key), rest in zip(made, left, strict=True)
-    )
-    words = _remainder_words(found)
-    if words:
-        rest = (
-            _missing(found, key) if column is None else scale * part
-            for (column, scale, key), part in zip(made, left, strict=True)
-        )
-        rows = (*rows, Row((words, *rest)))
-    return Table(
-        "ages",
-        _("Contribution of each single age group, by two methods"),
-        heads,
-        rows,
-        _(
-            "Both columns for life expectancy add up to its difference; between ages they may part"
-            " where many rates change at once."
-        ),
-        total=Row((_("sum"), *sums)),
-    )
-
-
-def _left(found: Comparison, key: str) -> float:
-    part = found.contributions.get(key)
-    return 0.0 if part is None else part.remainder
-
-
-def _by_age(found: Comparison, key: str) -> Array | None:
-    part = found.contributions.get(key)
-    return None if part is None else part.by_age
-
-
-def _one(found: Comparison, column: Array | None, scale: float, key: str, at: int) -> Cell:
-    if column is None:
-        return _missing(found, key)
-    return number(scale * float(column[at]))

@@ -10,10 +10,12 @@ from server.charts.chart import Chart
 from server.exports.table import Table
 from server.pages import frames
 from server.pages import population_year_living as living
+from server.pages import population_year_models as models
 from server.pages import population_year_rates as rates
 from server.pages import population_year_tables as tables
 from server.pages.choices import Offer, offer
 from server.pages.page import Caution, Frame, Page
+from server.results.models import ADULT
 from server.results.population_year import Findings, population_year
 from server.results.questions import (
     ComparisonQuestion,
@@ -23,6 +25,7 @@ from server.results.questions import (
     address,
 )
 from server.sentences import basis, names
+from server.sentences import models as models_say
 from server.sentences import population_year as say
 from server.sentences.pieces import Piece, Sentence
 from server.sentences.reasons import reason
@@ -52,6 +55,10 @@ class PopulationYearPage(Page):
     template: ClassVar[str] = "population-year/page.html"
     drawn: frozenset[str]  # keys of the pictures there are
     groups: tuple[tuple[str, str], ...]  # further tables of figures, and what each is about
+    avoid: Sentence  # where the fewest deaths make a month; empty where it is not known
+    implied: Sentence  # whether deaths and people at the highest ages fit together
+    fitted: bool  # whether there is a table of laws
+    laws: Sentence  # which one describes the rates best
     about_table: Sentence
     rows: str  # summary of the folded life table
     computed: tuple[Sentence, ...]
@@ -81,6 +88,10 @@ def build(
         twins=frames.twins(heading, question),
         drawn=frozenset(chart.key for chart in charts),
         groups=tuple((table.key, table.title) for table in tables.further(found)),
+        avoid=_avoid(found),
+        implied=_implied(found),
+        laws=_laws(found),
+        fitted=any(one.found for one in found.laws),
         about_table=say.about_table(found.chain.table.grid.open_age, modelled=found.chain.modelled),
         rows=_rows(found),
         computed=basis.computed(found.settings),
@@ -99,8 +110,36 @@ def _charts(found: Findings, source: str) -> tuple[Chart, ...]:
 def _tables(found: Findings) -> tuple[Table, ...]:
     made = [tables.figures(found), *tables.further(found), tables.life(found), tables.rises(found)]
     if found.gainful:
-        made.append(tables.gains(found))
+        made += [tables.gains(found), models.avoidable(found)]
+    implied = models.implied(found)
+    made += [models.laws(found), *([implied] if implied else [])]
     return tuple(table for table in made if table.rows)
+
+
+def _avoid(found: Findings) -> Sentence:
+    of, labels = found.avoidable, found.loaded.panel.grid.labels
+    known = np.isfinite(of.deaths)
+    if not found.gainful or not known.any():
+        return ()
+    at = int(np.nanargmin(of.deaths))
+    return models_say.avoid(labels[at], float(of.deaths[at]))
+
+
+def _implied(found: Findings) -> Sentence:
+    of = found.implied
+    if of is None or not of.known:
+        return ()
+    parent = next(area.parent for area in found.holdings.areas if area.code == found.of.area)
+    population = of.population
+    return models_say.implied(population.ratio, population.age, found.holdings.name(parent))
+
+
+def _laws(found: Findings) -> Sentence:
+    adult = [one for one in found.laws if one.found and one.first >= ADULT]
+    if not adult:
+        return models_say.none_fits()
+    best = min(adult, key=lambda one: float(one.fit.aic))
+    return models_say.best(_(best.law.label), best.first)
 
 
 def _frame(found: Findings) -> Frame:

@@ -50,7 +50,10 @@ def _figures(found: Findings, name: str, title: str, keys: Sequence[str]) -> Tab
             year=found.period,
             before=before.period,
         )
-    shown = {key: [found.estimates[key], *([before.change[key]] if before else [])] for key in keys}
+    changes = before.change if before else {}
+    shown = {
+        key: [found.estimates[key], *([changes[key]] if key in changes else [])] for key in keys
+    }
     note = " ".join([note, *why_missing(shown, found.settings)])
     rows = tuple(_figure_row(found, key) for key in keys)
     return Table(name, title, tuple(heads), rows, note)
@@ -76,10 +79,14 @@ def _figure_row(found: Findings, key: str) -> Row:
     indicator = find(key)
     cells: list[Cell] = [key]
     sides: list[Estimate] = [found.estimates[key]]
-    if found.before:
-        sides += [found.before.estimates[key], found.before.change[key]]
+    before = found.before
+    if before:
+        sides.append(before.estimates[key])
+        sides += [before.change[key]] if key in before.change else []
     for side in sides:
         cells += triple(side, indicator.unit, found.settings)
+    if before and key not in before.change:
+        cells += [Gap(GapKind.UNDEFINED, _("Two of these do not compare with one another."))] * 3
     return Row(
         tuple(cells),
         second=what_it_counts(key, found.settings),

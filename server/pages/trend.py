@@ -19,7 +19,7 @@ from server.results.questions import (
     address,
 )
 from server.results.series import Series, series
-from server.sentences import basis, names
+from server.sentences import basis, kinds, names
 from server.sentences import trend as say
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.reasons import reason
@@ -63,6 +63,8 @@ def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendP
     chart = trend_chart.draw(found, say.finding(label, told), frames.source(heading))
     lead = [say.meaning(question.of)]
     if courses[0]:
+        change = courses[0].change
+        lead.append(kinds.could_be_seen(found.indicator, change, found.settings))
         lead += [say.halves(courses[0]), say.others(told[1 : 1 + SAID])]
     return TrendPage(
         frame=frames.pinned(
@@ -176,6 +178,7 @@ def _cautions(found: Series) -> tuple[Caution, ...]:
         beside=[
             basis.provisional(sorted(provisional)),
             basis.pooled(found.settings),
+            say.no_two(found.indicator),
             say.small(small),
             *_missing(found),
         ],

@@ -1,11 +1,10 @@
 """Two population-years and the explained difference between them: this less that."""
 
-from collections.abc import Sequence
-from dataclasses import dataclass
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass, replace
 from functools import reduce
 
 import numpy as np
-from numpy.typing import NDArray
 
 from engine import decomposition, indicators
 from engine import settings as named
@@ -16,6 +15,7 @@ from engine.panel import Panel
 from engine.settings import Settings
 from engine.tables import LifeTable
 from server.results.estimating import COMPARED, differences, estimates, stream
+from server.results.explaining import Explained, Sides, explain
 from server.results.loading import (
     Beside,
     Found,
@@ -32,8 +32,6 @@ from server.results.revision import Moved, moved
 from server.store.connect import Session
 from server.store.heading import Heading
 
-DECOMPOSED = ("e0", "H")
-
 
 @dataclass(frozen=True, slots=True)
 class Side:
@@ -44,18 +42,6 @@ class Side:
     panel: Panel
     table: LifeTable
     estimates: dict[str, Estimate]
-
-
-@dataclass(frozen=True, slots=True)
-class Contribution:
-    """What each age adds to a difference; the remainder belongs to no age."""
-
-    by_age: Array  # [age]
-    by_group: Array  # [group], the same summed, with the limits of the sums
-    low: Array
-    high: Array
-    remainder: float
-    difference: float
 
 
 @dataclass(frozen=True, slots=True)
@@ -72,7 +58,7 @@ class Comparison:
     that: Side
     overlap: Shared | None  # deaths counted in both; None also where they are not held
     difference: dict[str, Estimate]
-    contributions: dict[str, Contribution]  # by indicator; missing where one side is undefined
+    explained: Explained
     arriaga: Array  # [age] of `grid`, for e0
     moved: Moved | None
 
@@ -99,14 +85,15 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
     both = overlap(question.this, question.that, held.areas, settings.years)
     asked: list[PopulationYear | Shared] = [question.this, question.that]
     asked += [both] if both else []
+    years = _years_between(question, held, settings)
     beside = Beside.of(settings, held.areas, indicators.find(question.of))
-    loaded = load(session, collection, number, asked, beside)
+    loaded = load(session, collection, number, [*asked, *years], beside)
     for wanted in (question.this, question.that):
         if wanted not in loaded:
             raise held.lacks(wanted)
     if both not in loaded:
         both = None
-    grid = _shared_grid(loaded)
+    grid = _shared_grid(loaded, asked)
     keys = tuple(dict.fromkeys((*COMPARED, question.of)))
     this, that = (
         _side(collection, one, loaded[one], grid, settings, keys)
@@ -127,11 +114,13 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
         that=that,
         overlap=both,
         difference=difference,
-        contributions={
-            key: _contribution(key, this, that, settings, codes, shared, groups)
-            for key in DECOMPOSED
-            if np.isfinite(difference[key].value)
-        },
+        explained=explain(
+            question.of,
+            {key for key, one in difference.items() if np.isfinite(one.value)},
+            Sides(this.panel, that.panel, shared, codes, groups),
+            _between(loaded, years, grid),
+            settings,
+        ),
         arriaga=_on(grid, decomposition.arriaga(this.table, that.table)),
         moved=moved(
             session, heading, asked, beside, lambda newer: _headline(question, newer, settings)
@@ -144,14 +133,40 @@ def _headline(question: ComparisonQuestion, loaded: Found, settings: Settings) -
     two is not held."""
     if not {question.this, question.that} <= loaded.keys():
         return np.nan
-    grid = _shared_grid(loaded)
+    grid = _shared_grid(loaded, loaded)
     this, that = (loaded[one].panel.regroup(grid) for one in (question.this, question.that))
     return float(indicators.difference(indicators.find(question.of), this, that, settings).value)
 
 
-def _shared_grid(loaded: Found) -> AgeGrid:
+def _shared_grid(loaded: Found, asked: Iterable[PopulationYear | Shared]) -> AgeGrid:
     """The finest to which both sides, and what is counted in both, can be summed."""
-    return reduce(AgeGrid.common, (one.panel.grid for one in loaded.values()))
+    held = (loaded[one].panel.grid for one in asked if one in loaded)
+    return reduce(AgeGrid.common, held)
+
+
+def _years_between(
+    question: ComparisonQuestion, held: Holdings, settings: Settings
+) -> tuple[PopulationYear, ...]:
+    """All years from that to this, where there are some between two years of one area and sex and
+    the edition holds them; not of years added up, which overlap."""
+    this, that = question.this, question.that
+    step = 1 if this.period > that.period else -1
+    years = [
+        replace(that, period=f"{year:04}")
+        for year in range(int(that.period), int(this.period) + step, step)
+    ]
+    one_people = (this.area, this.sex) == (that.area, that.sex)
+    whole = one_people and settings.years == 1 and all(year in held.status for year in years)
+    return tuple(years) if whole and len(years) > 2 else ()
+
+
+def _between(loaded: Found, years: Sequence[PopulationYear], grid: AgeGrid) -> Panel | None:
+    """The panels of these years on the grid; None where one is lacking or has coarser groups."""
+    panels = [loaded[year].panel for year in years if year in loaded]
+    fine = all(set(grid.starts) <= set(panel.grid.starts) for panel in panels)
+    if not panels or len(panels) < len(years) or not fine:
+        return None
+    return Panel.stack([panel.regroup(grid) for panel in panels])
 
 
 def _side(
@@ -175,33 +190,3 @@ def _on(grid: AgeGrid, by_age: Array) -> Array:
 
 def _groups(grid: AgeGrid) -> AgeGrid:
     return AgeGrid(tuple(start for start in grid.starts if start % 5 == 0 or start == 1))
-
-
-def _contribution(
-    key: str,
-    this: Side,
-    that: Side,
-    settings: Settings,
-    codes: tuple[NDArray[np.str_], NDArray[np.str_]],
-    shared: Panel | None,
-    groups: AgeGrid,
-) -> Contribution:
-    indicator = indicators.find(key)
-    parts = decomposition.contributions(indicator, this.panel, that.panel, settings)
-    low, high = decomposition.contribution_limits(
-        indicator,
-        this.panel,
-        that.panel,
-        settings,
-        streams=codes,
-        shared=None if shared is None else shared.deaths,
-        groups=groups,
-    )
-    return Contribution(
-        parts.by_age,
-        this.panel.grid.regroup(parts.by_age, groups),
-        low,
-        high,
-        float(parts.remainder),
-        float(parts.difference),
-    )

@@ -10,7 +10,8 @@ from engine.ages import Array
 from engine.chain import Chain, run
 from engine.estimates import Estimate, Reason
 from engine.settings import Settings, span
-from server.results.estimating import EVERY, differences, estimates, stream
+from server.results import models
+from server.results.estimating import COMPARED, EVERY, differences, estimates, stream
 from server.results.loading import Beside, Found, Holdings, Loaded, holdings, load
 from server.results.questions import PopulationYear, PopulationYearQuestion
 from server.results.revision import Moved, moved
@@ -29,7 +30,8 @@ class Before:
     loaded: Loaded
     period: str  # the year, or the years added up
     estimates: dict[str, Estimate]
-    change: dict[str, Estimate]  # the year asked for less the one before, on the grid they share
+    change: dict[str, Estimate]  # the year asked for less the one before, on the grid they share;
+    # not of ratios to a whole, of which two do not compare
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,6 +48,9 @@ class Findings:
     before: Before | None  # None where the edition lacks the year before
     rises: ageing.Rises
     gain: Array  # years of life expectancy at birth for 1 % lower rates, by age of the table
+    avoidable: sensitivity.Avoidable  # deaths to avoid for a month of life expectancy at birth
+    laws: tuple[models.Fitted, ...]
+    implied: models.Implied | None  # None where the area is part of no larger one
     moved: Moved | None
 
     @property
@@ -100,6 +105,9 @@ def population_year(
         before=_before(collection, question.of, previous, loaded, settings),
         rises=ageing.rises(panel, level=settings.level),
         gain=sensitivity.gain_per_percent(indicators.find("e0"), chain),
+        avoidable=sensitivity.deaths_to_avoid(indicators.find("e0"), chain),
+        laws=models.fitted(panel, settings.level),
+        implied=models.implied(panel, settings),
         moved=moved(
             session,
             heading,
@@ -127,7 +135,7 @@ def _before(
         names.years(span(previous.period, settings.years)),
         estimates(EVERY, that, settings, stream(collection, previous)),
         differences(
-            EVERY,
+            COMPARED,
             this.regroup(grid),
             that.regroup(grid),
             settings,

@@ -2,24 +2,26 @@
 
 import math
 
+from engine.indicators import Indicator
+from server.sentences import names
 from server.sentences.comparison import Answer
-from server.sentences.movements import years
+from server.sentences.movements import shown, years
 from server.sentences.numbers import number, whole
 from server.sentences.pieces import Sentence, phrase
 from server.sentences.text import _
 
 
-def carried(ages: str, part: float, difference: float, unit_decimals: int = 1) -> Sentence:
+def carried(ages: str, part: float, difference: float, *, named: bool) -> Sentence:
     """Which ages hold most of a difference in life expectancy; nothing where others work so much
-    against it that their part is more than the whole."""
+    against it that their part is more than the whole. `named`: the answer was on something else."""
     if abs(part) > abs(difference):
         return ()
-    return phrase(
-        _("Ages {ages} carry {part} of the {whole}."),
-        ages=ages,
-        part=number(abs(part), unit_decimals),
-        whole=years(difference, unit_decimals),
+    text = (
+        _("Ages {ages} carry {part} of the {whole} by which life expectancy differs.")
+        if named
+        else _("Ages {ages} carry {part} of the {whole}.")
     )
+    return phrase(text, ages=ages, part=number(abs(part), 1), whole=years(difference, 1))
 
 
 def survivors(of: Answer, share: float, from_age: int) -> str:
@@ -46,6 +48,21 @@ def by_age(of: Answer, ages: str, part: float) -> str:
         ages=ages,
         part=number(abs(part), 1),
         whole=years(float(of.difference.value)),
+    )
+
+
+def of_asked(of: Answer, ages: str, part: float) -> str:
+    """The same for any other indicator."""
+    label = names.inside(_(of.indicator.label))
+    if not of.clear or abs(part) > abs(float(of.difference.value)):
+        return _("What each age adds to the difference in {label}", label=label)
+    unit = of.indicator.unit
+    return _(
+        "Ages {ages} make most of the difference in {label}: {part} of {whole}",
+        ages=ages,
+        label=label,
+        part=number(unit.scale * part, unit.decimals, signed=True),
+        whole=shown(of.difference, unit, signed=True),
     )
 
 
@@ -92,6 +109,15 @@ def not_parted(why: str) -> Sentence:
     """In place of the picture of contributions to H."""
     return phrase(
         _("For unevenness (H) the ages’ parts cannot be given. {why}"),
+        why=why,
+    )
+
+
+def not_shared_out(one: Indicator, why: str) -> Sentence:
+    """In place of the picture of contributions to an indicator that has none."""
+    return phrase(
+        _("The difference in {label} is not shared out over ages. {why}"),
+        label=names.inside(_(one.label)),
         why=why,
     )
 

@@ -1,0 +1,133 @@
+"""What a difference is made of: ages, kinds of change, and the age composition of the people."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from engine import decomposition, indicators, shift
+from engine.ages import AgeGrid, Array
+from engine.indicators import Indicator
+from engine.panel import Panel
+from engine.settings import Settings
+
+DECOMPOSED = ("e0", "H")  # whatever else is asked for
+Codes = NDArray[np.str_]
+
+
+@dataclass(frozen=True, slots=True)
+class Sides:
+    """Two populations on one grid, and what both count."""
+
+    this: Panel
+    that: Panel
+    shared: Panel | None
+    codes: tuple[Codes, Codes]
+    groups: AgeGrid  # those of pictures
+
+
+@dataclass(frozen=True, slots=True)
+class Contribution:
+    """What each age adds to a difference; the remainder belongs to no age."""
+
+    by_age: Array  # [age]
+    by_group: Array  # [group], the same summed, with the limits of the sums
+    low: Array
+    high: Array
+    remainder: float
+    difference: float
+    order_share: float  # how far the order of replacing decides it; nan along the straight line
+
+
+@dataclass(frozen=True, slots=True)
+class Two:
+    """A difference in two parts that add up to it."""
+
+    first: float
+    second: float
+
+
+@dataclass(frozen=True, slots=True)
+class Explained:
+    """All that is known of what a difference is made of."""
+
+    contributions: dict[str, Contribution]  # by indicator; missing where it has none
+    path: Array | None  # [age], of the indicator asked for, through all years between
+    unevenness: Two | None  # of H: through years lost per death, through life expectancy
+    crude: Two | None  # of the crude rate: owed to the ages of the people, to their death rates
+    kinds: shift.ShiftSqueeze
+
+
+def explain(
+    asked: str, finite: set[str], sides: Sides, between: Panel | None, settings: Settings
+) -> Explained:
+    """`finite` are the keys whose difference has a value; `between` [year, age] are all years from
+    that to this, where there are some between and all are held."""
+    keys = dict.fromkeys((*DECOMPOSED, asked))
+    parts = {
+        key: _contribution(indicators.find(key), sides, settings) for key in keys if key in finite
+    }
+    found = indicators.find(asked)
+    return Explained(
+        contributions={key: part for key, part in parts.items() if part is not None},
+        path=_path(found, between, settings) if asked in finite else None,
+        unevenness=_unevenness(sides, settings) if "H" in finite else None,
+        crude=_crude(sides) if "cdr" in finite else None,
+        kinds=shift.shift_squeeze(sides.this, sides.that, settings, shared=sides.shared),
+    )
+
+
+def decomposable(indicator: Indicator) -> bool:
+    """Whether its difference is shared out over ages at all."""
+    return indicator.unit.limits != "count" and indicator.key not in decomposition.NOT_DECOMPOSED
+
+
+def _contribution(indicator: Indicator, sides: Sides, settings: Settings) -> Contribution | None:
+    if not decomposable(indicator):
+        return None
+    both = (sides.this, sides.that)
+    parts: decomposition.Contributions | decomposition.Stepwise
+    if indicator.smooth:
+        parts = decomposition.contributions(indicator, *both, settings)
+        order = np.nan
+    else:
+        parts = decomposition.stepwise(indicator, *both, settings)
+        order = float(parts.order_share)
+    low, high = decomposition.contribution_limits(
+        indicator,
+        *both,
+        settings,
+        streams=sides.codes,
+        shared=None if sides.shared is None else sides.shared.deaths,
+        groups=sides.groups,
+    )
+    return Contribution(
+        parts.by_age,
+        sides.this.grid.regroup(parts.by_age, sides.groups),
+        low,
+        high,
+        float(parts.remainder),
+        float(parts.difference),
+        order,
+    )
+
+
+def _path(indicator: Indicator, between: Panel | None, settings: Settings) -> Array | None:
+    if between is None or not indicator.smooth:
+        return None
+    by_age = decomposition.along(indicator, between, settings).by_age
+    return by_age if np.isfinite(by_age).all() else None
+
+
+def _unevenness(sides: Sides, settings: Settings) -> Two:
+    lost, lived = (indicators.find(key) for key in ("edagger", "e0"))
+    parts = decomposition.unevenness_parts(lost, lived, sides.this, sides.that, settings)
+    return Two(
+        float(parts.lost.sum() + parts.lost_remainder),
+        float(parts.lived.sum() + parts.lived_remainder),
+    )
+
+
+def _crude(sides: Sides) -> Two:
+    parts = decomposition.of_crude_rates(sides.this, sides.that)
+    return Two(float(parts.composition.sum()), float(parts.rate.sum()))

@@ -1,0 +1,75 @@
+"""What fitted laws and the deaths at the highest ages say of one population."""
+
+from engine.estimates import Estimate
+from server.sentences.numbers import interval, number, whole
+from server.sentences.pieces import Sentence, phrase
+from server.sentences.text import _
+
+
+def best(label: str, first: int) -> Sentence:
+    """Which law describes the rates best among those fitted from one age."""
+    return phrase(
+        _("From age {first} the law of {label} describes the death rates best."),
+        first=str(first),
+        label=label,
+    )
+
+
+def none_fits() -> Sentence:
+    return phrase(_("No law could be fitted to these death rates."))
+
+
+def implied(ratio: Estimate, age: int, whole_area: str) -> Sentence:
+    """Whether deaths and people at the highest ages fit together, as in the larger area."""
+    percent, low, high = (100 * (float(part) - 1) for part in (ratio.value, ratio.low, ratio.high))
+    limits = interval(low, high, 0, signed=True)
+    if low <= 0 <= high:
+        return phrase(
+            _(
+                "Deaths and people at {age} and over fit together as they do in {area}: the people"
+                " that the deaths imply are as many as were counted, within what chance can do"
+                " ({interval} %)."
+            ),
+            age=str(age),
+            area=whole_area,
+            interval=limits,
+        )
+    text = (
+        _(
+            "At {age} and over the deaths imply {percent} % more people than were counted"
+            " ({interval} %), set against {area}. People or deaths may be miscounted there, or the"
+            " very old of this area differ; a few per cent tell nothing."
+        )
+        if percent > 0
+        else _(
+            "At {age} and over the deaths imply {percent} % fewer people than were counted"
+            " ({interval} %), set against {area}. People or deaths may be miscounted there, or the"
+            " very old of this area differ; a few per cent tell nothing."
+        )
+    )
+    size = number(abs(percent), 0)
+    return phrase(text, age=str(age), area=whole_area, percent=size, interval=limits)
+
+
+def exchange() -> str:
+    """How the table of deaths to avoid is to be read."""
+    return _(
+        "Arithmetic, all other ages as they are: it says neither what can be done nor what it"
+        " costs, and ranks no lives."
+    )
+
+
+def out_of_reach() -> str:
+    return _("Not even without all deaths of this age.")
+
+
+def avoid(ages: str, deaths: float) -> Sentence:
+    """Where the fewest deaths make a month."""
+    return phrase(
+        _(
+            "A month of life expectancy takes fewest deaths in the age group {ages}: {deaths} fewer"
+            " there, all other ages as they are."
+        ),
+        ages=ages,
+        deaths=whole(deaths),
+    )
