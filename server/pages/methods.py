@@ -5,6 +5,7 @@ from typing import ClassVar
 
 from engine.indicators import GROUPS
 from engine.settings import SETTINGS
+from engine.standards import STANDARDS
 from server.exports.table import Column, Row, Table
 from server.intake.checks import KINDS
 from server.pages.entry import Entry
@@ -66,7 +67,7 @@ def build() -> MethodsPage:
         ),
         chapters=chapters,
         chains=chains,
-        tables=(_indicators(), _settings(), _checks()),
+        tables=(_indicators(), _settings(), _standards(), _checks()),
         twins={twin: f"/methods.{twin}" for twin in ("csv", "xlsx", "json")},
     )
 
@@ -121,6 +122,25 @@ def _settings() -> Table:
             Row((one.key, word, sentence))
             for one in SETTINGS.values()
             for word, sentence in say.settings(one)
+        ),
+    )
+
+
+def _standards() -> Table:
+    return Table(
+        "standards",
+        _("Standard populations"),
+        (
+            Column("key", _("key in addresses")),
+            Column("label", _("name")),
+            Column("age", _("age")),
+            Column("weight", _("weight, as published")),
+            Column("source", _("source")),
+        ),
+        tuple(
+            Row((f"asr_{one.key}", _(one.label), age, weight, _(one.source)))
+            for one in STANDARDS.values()
+            for age, weight in zip(one.grid.labels, one.weights, strict=True)
         ),
     )
 

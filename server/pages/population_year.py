@@ -129,9 +129,15 @@ def _implied(found: Findings) -> Sentence:
     of = found.implied
     if of is None or not of.known:
         return ()
-    parent = next(area.parent for area in found.holdings.areas if area.code == found.of.area)
     population = of.population
-    return models_say.implied(population.ratio, population.age, found.holdings.name(parent))
+    return models_say.implied(population.ratio, population.age, _parent(found))
+
+
+def _parent(found: Findings) -> str:
+    """Name of the area that this one is part of; empty where there is none."""
+    areas = found.holdings.areas
+    parent = next((area.parent for area in areas if area.code == found.of.area), "")
+    return found.holdings.name(parent) if parent else ""
 
 
 def _laws(found: Findings) -> Sentence:
@@ -204,6 +210,8 @@ def _cautions(found: Findings) -> tuple[Caution, ...]:
             basis.provisional(provisional),
             basis.few_person_years(float(panel.exposure.sum()), found.settings),
             basis.law(found.settings, panel.grid.open_age) if found.chain.modelled else None,
+            basis.borrowed(panel.grid.open_age, _parent(found)) if found.chain.borrowed else None,
+            basis.early_end(panel.grid.open_age) if found.chain.open_low else None,
         ],
         below=[
             basis.no_deaths(empty),

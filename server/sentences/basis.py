@@ -107,6 +107,24 @@ def regrouped(period: str) -> Told:
     )
 
 
+def borrowed(age: int, whole: str) -> Told:
+    """That nobody died in the open age group, and another area's rate stands there."""
+    return _("Borrowed rate"), _(
+        "Nobody died at {age} and over: the death rate there is that of {whole}, taken as known.",
+        age=age,
+        whole=whole,
+    )
+
+
+def early_end(age: int) -> Told:
+    """That the open age group begins at an age where closing it is a coarse guess."""
+    return _("Early end"), _(
+        "The ages end at {age} and over, and how long those who reach it live on is read off their"
+        " death rate alone: life expectancy may be out by more than its interval says.",
+        age=age,
+    )
+
+
 def law(settings: Settings, open_age: int) -> Told:
     return _("Model"), _(
         "Above {age} a law fitted from age {first} stands in for the counts; what is read there is"

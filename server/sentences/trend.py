@@ -108,11 +108,7 @@ def answer(course: Course | None, label: str, who: str) -> Sentence:
     if course.kind in (Movement.BARELY_MORE, Movement.BARELY_LESS):
         interval = _("{interval}, hardly more than chance alone could do", interval=interval)
     parts |= {"amount": course.size(course.change), "interval": bracketed(interval)}
-    if (
-        unit.key == "years"
-        and course.indicator.key.startswith("e")
-        and not course.indicator.key.startswith("edagger")
-    ):
+    if course.indicator.label.startswith("Life expectancy"):
         text = (
             _("{who} gained {amount} of {label} between {first} and {last} {interval}.")
             if course.change.value > 0
@@ -254,6 +250,17 @@ def small(lines: list[str]) -> tuple[str, str] | None:
         "For {lines} a single year’s interval is wider than the change over all years drawn: no"
         " single turn of these lines means much.",
         lines=names.listed(lines, most=8),
+    )
+
+
+def no_two(indicator: Indicator) -> tuple[str, str] | None:
+    """Of a ratio to a larger area: that its values do not compare with one another."""
+    if not indicator.needs.whole:
+        return None
+    return _("Not comparable"), _(
+        "Each value sets an area against the larger one it is part of, weighted by its own people of"
+        " that year. Two of them, of areas or of years, do not compare with one another; a"
+        " standardised death rate does."
     )
 
 
