@@ -9,6 +9,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from engine.ages import AgeGrid
 from engine.chain import Reading, run
 from engine.decomposition import contributions
 from engine.indicators import INDICATORS
@@ -81,16 +82,17 @@ def test_each_age_of_a_join_has_its_own_part(empty: tuple[int, int]) -> None:
 @pytest.mark.fast
 def test_a_borrowed_open_rate_counts_as_the_rate_there() -> None:
     """Nobody died in the open group of this: table and line have the rate of the whole."""
-    borrowing = replace(PLAIN, borrow=True)
-    whole = gompertz_panel(people=1e7, level=3e-5)
-    this = replace(gompertz_panel(people=5e4, level=2.5e-5, seed=3), whole=whole)
+    borrowing, short = replace(PLAIN, borrow=True), AgeGrid((0, 1, *range(5, 90, 5)))
+    whole = gompertz_panel(people=1e7, level=3e-5).regroup(short)
+    this = replace(gompertz_panel(people=5e4, level=2.5e-5).regroup(short), whole=whole)
     this.deaths[-1] = 0
-    that = replace(gompertz_panel(people=1e6, level=4e-5), whole=whole)
+    that = replace(gompertz_panel(people=1e6, level=4e-5).regroup(short), whole=whole)
     found = contributions(INDICATORS["e0"], this, that, borrowing)
     mx = run(this, borrowing).mx
     lent = replace(this, deaths=mx * this.exposure)
     expected = contributions(INDICATORS["e0"], lent, that, borrowing)
     np.testing.assert_allclose(found.by_age, expected.by_age, rtol=1e-9, atol=1e-12)
+    assert found.by_age[-1] > 0.1
     assert abs(found.remainder) < 1e-9 * np.abs(found.by_age).sum()
 
 
