@@ -1,11 +1,14 @@
 """Standardised rates and their limits against printed values and separate computations."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from numpy.testing import assert_allclose
 
 from engine.ages import AgeGrid, Array
 from engine.chain import gradient, run
+from engine.indicators import estimate, find
 from engine.indicators.rates import FAMILY as RATES
 from engine.indicators.standardised import by_standard
 from engine.panel import Panel
@@ -92,8 +95,27 @@ def test_denmark(sex: str, single: bool) -> None:
                ("crude_per_1e5", "asr_esp2013_per_1e5", "gamma_lo", "gamma_hi")}  # fmt: skip
     (crude_rate,), asr = RATES, by_standard(standard)
     assert_allclose(1e5 * crude_rate.value(chain), columns["crude_per_1e5"], atol=1e-4)
+    got = estimate(asr, panel, SETTINGS["almanac-1"])
+    for part, column in (("low", "gamma_lo"), ("high", "gamma_hi")):
+        assert_allclose(1e5 * getattr(got, part), columns[column], atol=1e-4)
     assert_allclose(1e5 * asr.value(chain), columns["asr_esp2013_per_1e5"], atol=1e-4)
     per_death = chain.rates.per_death(gradient(asr, chain))
     low, high = LIMITS["gamma"](per_death, panel.deaths, 0.95)
     assert_allclose(1e5 * low, columns["gamma_lo"], atol=1e-4)
     assert_allclose(1e5 * high, columns["gamma_hi"], atol=1e-4)
+
+
+@pytest.mark.parametrize(
+    "row", rows("poisson_limits.csv"), ids=lambda r: f"{r['count']}-{r['level']}"
+)
+def test_a_crude_rate_and_a_rate_over_births_have_exact_limits(row: dict[str, str]) -> None:
+    """The printed years stand once for those lived and once for births."""
+    count, years = float(row["count"]), float(row["person_years"])
+    panel = Panel.of(AgeGrid((0, 1)), np.array([count, 0.0]), np.array([10.0, years - 10]), sex="f")
+    panel = replace(panel, births=np.array([years, 0.0, 0.0]))
+    settings = replace(SETTINGS["almanac-1"], level=float(row["level"]))
+    for key in ("cdr", "imr") if count else ("imr",):  # of no deaths at all no death rate is given
+        got = estimate(find(key), panel, settings)
+        assert got.value == pytest.approx(count / years, rel=1e-12)
+        assert got.low == pytest.approx(float(row["low"]), rel=1e-9)
+        assert got.high == pytest.approx(float(row["high"]), rel=1e-9)

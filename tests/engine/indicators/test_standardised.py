@@ -9,10 +9,12 @@ from numpy.testing import assert_allclose
 from engine.chain import Chain, gradient, run
 from engine.estimates import Reason
 from engine.indicator import Indicator
+from engine.indicators import estimate
 from engine.indicators.rates import FAMILY as RATES
 from engine.indicators.standardised import FAMILY, by_population, by_standard
 from engine.panel import Panel
 from engine.settings import SETTINGS
+from engine.standardisation import few_deaths
 from engine.standards import STANDARDS, Standard
 from tests.factories import GRIDS, gompertz_panel
 
@@ -92,3 +94,14 @@ def test_two_ratios_are_said_not_to_compare(key: str) -> None:
 def test_a_ratio_of_one_is_as_many_as_expected() -> None:
     unit = ENTRIES["smr"].unit
     assert (unit.scale, unit.decimals, unit.limits) == (1, 2, "gamma")
+
+
+@pytest.mark.parametrize("entry", [ENTRIES["asr_esp2013"], ISLE], ids=lambda i: i.key)
+def test_under_ten_deaths_there_is_no_rate_and_under_twenty_it_is_flagged(entry: Indicator) -> None:
+    totals = np.array([9.0, 10, 19, 20])
+    panel = gompertz_panel(GRIDS["abridged"], slope=np.full(4, 0.1))
+    deaths = np.where(np.array(panel.grid.starts) == 70, totals[:, None], 0.0)
+    got = estimate(entry, replace(panel, deaths=deaths, standard=panel), SETTINGS["almanac-1"])
+    assert np.isnan(got.value).tolist() == [True, False, False, False]
+    assert got.reason.tolist() == [Reason.TOO_FEW_DEATHS, 0, 0, 0]
+    assert few_deaths(entry, deaths).tolist() == [False, True, True, False]
