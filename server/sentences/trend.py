@@ -258,8 +258,8 @@ def no_two(indicator: Indicator) -> tuple[str, str] | None:
     if not indicator.needs.whole:
         return None
     return _("Not comparable"), _(
-        "Each value sets an area against the larger one it is part of, weighted by its own people of"
-        " that year. Two of them, of areas or of years, do not compare with one another; a"
+        "Each value sets an area against the larger one it is part of, weighted by its own people"
+        " of that year. Two of them, of areas or of years, do not compare with one another; a"
         " standardised death rate does."
     )
 
