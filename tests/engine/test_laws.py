@@ -101,9 +101,6 @@ def mean_over_groups(law: Law, at: np.ndarray, exposure: np.ndarray) -> np.ndarr
     return np.asarray(found)
 
 
-# ---- one term, at single ages --------------------------------------------------------------------
-
-
 @pytest.mark.fast
 @BOTH
 @pytest.mark.parametrize(
@@ -151,9 +148,6 @@ def test_shapes_of_the_two() -> None:
     np.testing.assert_allclose(
         KANNISTO.hazard(at, law, 85.0), [1 / (1 + np.exp(2)), 1 / (1 + np.exp(-2.5))]
     )
-
-
-# ---- several terms, over age groups --------------------------------------------------------------
 
 
 @pytest.mark.fast
@@ -258,6 +252,23 @@ def test_an_excess_of_the_first_year_that_is_best_at_0_is_held_there() -> None:
 
 
 @pytest.mark.fast
+@pytest.mark.parametrize("name", ["background", "infant"])
+def test_a_rate_lost_on_the_way_is_no_rate_at_its_bound(
+    name: str, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """A search begun where the rate is nearly 0 holds it at 0; as the likelihood rises when it
+    leaves 0, that is no maximum and is not given out as one."""
+    law = MAKEHAM_INFANT
+    deaths, exposure = drawn(law, 9)
+    assert fit(law, AGES, deaths, exposure, widths=WIDTHS).converged
+    start = np.where(np.arange(4) == law.position(name), -60.0, truth(law))[None]
+    monkeypatch.setattr("engine.laws._start", lambda rows: start)
+    found = fit(law, AGES, deaths, exposure, widths=WIDTHS)
+    assert not found.converged
+    assert not found.at_bound.any()
+
+
+@pytest.mark.fast
 def test_infant_deaths_without_a_best_decline_leave_no_siler_law() -> None:
     """Danish men of 2012: the likelihood grows with the decline for ever, towards infants' deaths
     all in the first year; the law with those has its maximum there."""
@@ -297,9 +308,6 @@ def test_groups_of_five_years_tell_slope_and_mode(growth: float) -> None:
     assert wide.slope == pytest.approx(b, rel=1e-3)
     assert mode == pytest.approx(np.log(b / a) / b, abs=0.01)
     assert middle.slope < 0.99 * b
-
-
-# ---- how sure, how well --------------------------------------------------------------------------
 
 
 @pytest.mark.fast
@@ -374,9 +382,6 @@ def test_the_information_is_minus_the_curvature(law: Law) -> None:
     relative = (np.array(curvature) - found.information) / np.outer(scale, scale)
     np.testing.assert_allclose(relative, 0, atol=1e-5)
     np.testing.assert_allclose(found.covariance @ found.information, np.eye(len(scale)), atol=1e-9)
-
-
-# ---- gradients, batches, gaps --------------------------------------------------------------------
 
 
 @pytest.mark.fast
