@@ -126,7 +126,8 @@ FAMILY = (
             " for all their lives, read off a smooth curve through the death rates of the closed"
             " age groups from 10. Each group stands at its middle, which in groups of five years"
             " moves the age by one or two tenths of a year. Its interval allows for chance and"
-            " for not knowing how smooth the curve should be."
+            " for not knowing how smooth the curve should be; in trials with 100,000 persons and"
+            " more it held the true age in 89 to 99 of 100 cases."
         ),
         formula=(
             "the x with the greatest l(x) mu(x); log mu(x) a cubic B-spline with a knot every five"
