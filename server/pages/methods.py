@@ -134,7 +134,7 @@ def _standards() -> Table:
             Column("key", _("key in addresses")),
             Column("label", _("name")),
             Column("age", _("age")),
-            Column("weight", _("weight, as published")),
+            Column("weight", _("weight, as published"), decimals=2),
             Column("source", _("source")),
         ),
         tuple(

@@ -12,6 +12,7 @@ from server.pages import trend_tables as tables
 from server.pages.choices import Grouped, Offer, indicators, offer
 from server.pages.page import Caution, Page
 from server.results.questions import (
+    DEFAULT_INDICATOR,
     ComparisonQuestion,
     PopulationYear,
     PopulationYearQuestion,
@@ -62,7 +63,7 @@ def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendP
     area, sex = found.lines[0]
     chart = trend_chart.draw(found, say.finding(label, told), frames.source(heading))
     lead = [say.meaning(question.of)]
-    if courses[0]:
+    if courses[0] and not found.indicator.needs.whole:  # of those no two compare
         change = courses[0].change
         lead.append(kinds.could_be_seen(found.indicator, change, found.settings))
         lead += [say.halves(courses[0]), say.others(told[1 : 1 + SAID])]
@@ -133,13 +134,14 @@ def _years(found: Series, period: str) -> str:
 def _further(found: Series, courses: list[say.Course | None]) -> tuple[Sentence, ...]:
     """For the first lines: the comparison of their ends, and the life table of the last year."""
     asked, heading = found.question, found.heading
+    of = DEFAULT_INDICATOR if found.indicator.needs.whole else asked.of
     place = (heading.collection.code, heading.edition.number)
     changes, lives = [], []
     for line, ends, one in zip(found.lines[: SAID + 1], found.ends, courses, strict=False):
         if one is None or ends is None:
             continue
         first, last = (PopulationYear(*line, period) for period in ends)
-        compared = ComparisonQuestion(last, first, asked.of, asked.figures, asked.settings)
+        compared = ComparisonQuestion(last, first, of, asked.figures, asked.settings)
         lived = PopulationYearQuestion(last, asked.figures, asked.settings)
         words = _("{who}, {last} against {first}", who=one.who, last=one.last, first=one.first)
         changes.append(Piece(words, address(*place, compared)))

@@ -13,7 +13,7 @@ from engine.ages import AgeGrid
 from engine.estimates import Estimate, Reason
 from engine.indicators import Indicator
 from engine.panel import Panel
-from engine.settings import Settings
+from engine.settings import Settings, span
 from server.results.estimating import stream
 from server.results.loading import (
     Beside,
@@ -75,7 +75,7 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
     """
     held = holdings(session, heading.collection.code, heading.edition.number)
     settings, indicator = named.find(question.settings), indicators.find(question.of)
-    lines, periods = _in_tree_order(held, question), _periods(held, question)
+    lines, periods = _in_tree_order(held, question), _periods(held, question, settings.years)
     wanted = [PopulationYear(*line, period) for line in lines for period in periods]
     _require(held, question, wanted, indicator)
     collection, number = heading.collection.code, heading.edition.number
@@ -127,8 +127,11 @@ def _in_tree_order(held: Holdings, question: TrendQuestion) -> tuple[tuple[str, 
     return tuple(sorted(question.series, key=lambda line: order.get(line[0], len(order))))
 
 
-def _periods(held: Holdings, question: TrendQuestion) -> tuple[str, ...]:
-    return tuple(period for period in held.periods if question.first <= period <= question.last)
+def _periods(held: Holdings, question: TrendQuestion, years: int) -> tuple[str, ...]:
+    """The years asked for; of years added up those before which enough are held, if there are."""
+    asked = [period for period in held.periods if question.first <= period <= question.last]
+    pooled = [one for one in asked if set(span(one, years)) <= set(held.periods)]
+    return tuple(pooled or asked)
 
 
 def _require(
@@ -262,11 +265,11 @@ def _asked(
     """The changes of every span and line, one after the other; None where a line has none."""
     found: list[_Change | None] = []
     for row in spans:
-        for line, span in zip(lines, row, strict=True):
-            if span is None:
+        for line, ends in zip(lines, row, strict=True):
+            if ends is None:
                 found.append(None)
                 continue
-            first, last = (PopulationYear(*line, period) for period in span)
+            first, last = (PopulationYear(*line, period) for period in ends)
             found.append(_Change(last, first, overlap(last, first, (), years)))
     return found
 

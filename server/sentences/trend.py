@@ -9,6 +9,7 @@ from server.sentences.basis import in_a_row
 from server.sentences.movements import (
     Movement,
     bracketed,
+    has_interval,
     limits,
     movement,
     shown,
@@ -77,6 +78,8 @@ def answer(course: Course | None, label: str, who: str) -> Sentence:
             who=who,
         )
     unit = course.indicator.unit
+    if course.indicator.needs.whole:
+        return _beside_the_whole(course)
     parts: dict[str, Piece | str] = {
         "first": course.first,
         "last": course.last,
@@ -121,6 +124,19 @@ def answer(course: Course | None, label: str, who: str) -> Sentence:
         else _("{Label} among {who} fell by {amount} between {first} and {last} {interval}.")
     )
     return phrase(text, Label=label, **{**parts, "who": course.who})
+
+
+def _beside_the_whole(course: Course) -> Sentence:
+    """Of an indicator of which no two compare: the last one only."""
+    unit, last = course.indicator.unit, course.at_last
+    return phrase(
+        _("{label} among {who} in {year}: {value} {interval}."),
+        label=_(course.indicator.label),
+        who=course.who,
+        year=course.last,
+        value=shown(last, unit),
+        interval=bracketed(limits(last, unit)) if has_interval(last) else "",
+    )
 
 
 def halves(course: Course) -> Sentence:
