@@ -181,8 +181,8 @@ def limits(
             for sign in (1, -1)
         )
         astray = float(ndtri((1 + level) / 2)) * chance.astray
-        low = value - np.sqrt(raised.low**2 + lowered.high**2 + astray**2)
-        high = value + np.sqrt(raised.high**2 + lowered.low**2 + astray**2)
+        low = value - np.sqrt(_squares(raised.low, lowered.high, astray))
+        high = value + np.sqrt(_squares(raised.high, lowered.low, astray))
     if apart:
         return Interval(low, high)
     return Interval(np.clip(low, own.least, own.most), np.clip(high, own.least, own.most))
@@ -195,3 +195,8 @@ def _reach(weights: Array, counts: Array, level: float, more: float) -> Interval
     low, high = gamma_limits(total, variance, largest, level, more=more)
     nothing = largest == 0
     return Interval(*(np.where(nothing, 0.0, far) for far in (total - low, high - total)))
+
+
+def _squares(*parts: Array) -> Array:
+    """The sum of squares; a power of a single number is rounded otherwise than one of many."""
+    return np.asarray(sum(np.square(part) for part in parts))

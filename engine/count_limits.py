@@ -52,11 +52,14 @@ def gamma_limits(
     with np.errstate(all="ignore"):
         low = _gamma_quantile(value, variance, tail)
         low = np.where((value == 0) & (variance == 0), 0.0, low)
-        beyond = value + more * largest_weight, variance + more * largest_weight**2
+        beyond = value + more * largest_weight, variance + more * np.square(largest_weight)
         high = _gamma_quantile(*beyond, 1 - tail)
     return Interval(low, np.where(np.isnan(low), np.nan, high))
 
 
 def _gamma_quantile(mean: Array, variance: Array, share: float) -> Array:
-    """Quantile of the gamma law of this mean and variance."""
-    return np.asarray(variance / mean * gammaincinv(mean**2 / variance, share))
+    """Quantile of the gamma law of this mean and variance.
+
+    Squared by `np.square`, since a power of a single number is rounded otherwise than one of many.
+    """
+    return np.asarray(variance / mean * gammaincinv(np.square(mean) / variance, share))
