@@ -149,20 +149,20 @@ def test_standard_errors_are_what_single_deaths_move(law: Law, overlap: float) -
 
 @pytest.mark.fast
 def test_intervals_hold_what_they_say() -> None:
-    """300 pairs of samples: the limits of each part hold the true one in 95 % within chance."""
+    """200 pairs of samples: the limits of each part hold the true one in 95 % within chance."""
     law, rng = MAKEHAM_INFANT, np.random.default_rng(5)
     true = values(shift_squeeze(population(law, **OTHER), population(law), PLAIN, law=law))
     sides = []
     for changed in (OTHER, {}):
         one = population(law, people=1e6, **changed)
-        deaths = rng.poisson(one.deaths, (300, len(GRID))).astype(float)
+        deaths = rng.poisson(one.deaths, (200, len(GRID))).astype(float)
         sides.append(Panel.of(GRID, deaths, np.broadcast_to(one.exposure, deaths.shape), sex="f"))
     found = shift_squeeze(*sides, PLAIN, law=law)
     assert np.isfinite(values(found)).mean() > 0.99
     for name, expected in zip(VALUES, true, strict=True):
         one = getattr(found, name)
         held = ((one.low < expected) & (expected < one.high))[np.isfinite(one.low)]
-        assert held.mean() == pytest.approx(0.95, abs=0.045), name
+        assert held.mean() == pytest.approx(0.95, abs=0.05), name
 
 
 @pytest.mark.fast
