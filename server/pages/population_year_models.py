@@ -24,7 +24,7 @@ def laws(found: Findings) -> Table:
         Column("background", _("at all ages alike"), _("per 100,000"), 1),
         Column("deviance", _("deviance"), decimals=1),
         Column("free", _("age groups less parameters"), decimals=0),
-        Column("aic", "AIC", decimals=1),
+        Column("aic", _("AIC"), decimals=1),
     )
     rows = tuple(_law(one) for one in found.laws if one.found)
     note = _(

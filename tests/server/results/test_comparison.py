@@ -68,7 +68,7 @@ def isle(session: Session) -> Session:
 def test_contributions_add_up_to_the_difference(isle: Session) -> None:
     found = asked(isle, "north.f.2014", "north.f.2004")
     for key in ("e0", "H"):
-        part, difference = found.contributions[key], found.difference[key]
+        part, difference = found.explained.contributions[key], found.difference[key]
         assert_allclose(part.by_age.sum() + part.remainder, difference.value, rtol=1e-12)
         assert_allclose(part.difference, difference.value, rtol=1e-12)
         assert abs(part.remainder) < 1e-9
@@ -91,7 +91,7 @@ def test_two_open_ages_are_brought_to_one_and_named(isle: Session) -> None:
     found = asked(isle, "cape.f.2014", "north.f.2014")
     assert found.grid == SHORT
     assert [one.code for one in found.regrouped] == ["north.f.2014"]
-    assert set(found.contributions) == {"e0"}
+    assert set(found.explained.contributions) == {"e0"}
     assert found.difference["H"].reason == Reason.OPEN_GROUP_TOO_LARGE
 
 
@@ -134,8 +134,8 @@ def test_limits_are_those_of_both_sides_streams_with_shared_deaths_drawn_once(
             shared=this.deaths,
             groups=found.groups,
         )
-        assert_array_equal(found.contributions[key].low, low)
-        assert_array_equal(found.contributions[key].high, high)
+        assert_array_equal(found.explained.contributions[key].low, low)
+        assert_array_equal(found.explained.contributions[key].high, high)
 
 
 def test_what_both_count_is_brought_to_the_same_ages(session: Session) -> None:
@@ -163,10 +163,8 @@ def test_what_both_count_may_not_be_held(session: Session) -> None:
     edition(session, panels, parents={"north": "isle"}, delivered=("isle",))
     found = asked(session, "isle.f.2014", "north.p.2014")
     assert found.overlap is None
-    widths = [side.estimates["e0"] for side in (found.this, found.that)]
-    halves = [float(one.high - one.low) / 2 for one in widths]
-    difference = found.difference["e0"]
-    assert_allclose((difference.high - difference.low) / 2, np.hypot(*halves), rtol=1e-12)
+    apart = np.hypot(*(float(side.estimates["e0"].se) for side in (found.this, found.that)))
+    assert_allclose(found.difference["e0"].se, apart, rtol=1e-12)
 
 
 def test_an_area_that_is_its_whole_differs_by_nothing(session: Session) -> None:
@@ -190,7 +188,11 @@ def test_contributions_through_a_law_stand_on_the_grid_of_the_counts(isle: Sessi
     assert found.grid == SHORT
     assert len(found.this.table.grid) > len(found.grid)
     assert abs(found.arriaga[-1]) > 0.01
-    assert found.arriaga.shape == found.contributions["e0"].by_age.shape == (len(found.grid),)
+    assert (
+        found.arriaga.shape
+        == found.explained.contributions["e0"].by_age.shape
+        == (len(found.grid),)
+    )
     assert_allclose(found.arriaga.sum(), found.difference["e0"].value, rtol=1e-10)
 
 
@@ -208,7 +210,7 @@ def test_the_same_on_both_sides_differs_by_nothing_and_chance_has_no_part(isle: 
         assert difference.value == 0, key
         assert difference.reason == Reason.NO_SAMPLING_INTERVAL, key
         assert np.isnan(difference.low), key
-    assert_array_equal(found.contributions["e0"].by_age, 0)
+    assert_array_equal(found.explained.contributions["e0"].by_age, 0)
 
 
 def test_an_indicator_asked_for_joins_the_usual_ones(isle: Session) -> None:

@@ -41,14 +41,17 @@ def test_an_unclear_difference_is_owed_to_no_ages() -> None:
     assert say.survivors(asked(UNCLEAR), 0.5, 60) == "Survivors to each age on the two sides"
     clear = asked(estimate(1.7, 1.1, 2.4))
     assert say.by_age(clear, "35 to 59", 0.93).startswith("Ages 35 to 59 make most")
-    assert words(say.carried("35 to 59", 0.93, 1.7)) == "Ages 35 to 59 carry 0.9 of the 1.7 years."
+    asked_for = words(say.carried("35 to 59", 0.93, 1.7, named=False))
+    assert asked_for == "Ages 35 to 59 carry 0.9 of the 1.7 years."
+    beside = words(say.carried("35 to 59", 0.93, 1.7, named=True))
+    assert beside == "Ages 35 to 59 carry 0.9 of the 1.7 years by which life expectancy differs."
 
 
 def test_no_ages_hold_more_than_the_whole() -> None:
     loss = asked(estimate(-1.7, -2.4, -1.1))
     assert "What each age adds" in say.by_age(loss, "35 to 59", -1.8)
     assert say.by_age(loss, "35 to 59", -1.6).startswith("Ages 35 to 59 make most")
-    assert say.carried("35 to 59", -1.8, -1.7) == ()
+    assert say.carried("35 to 59", -1.8, -1.7, named=False) == ()
 
 
 def test_a_remainder_gets_its_row_only_beyond_rounding() -> None:
