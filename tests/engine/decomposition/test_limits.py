@@ -8,6 +8,7 @@ from numpy.typing import NDArray
 from scipy.special import ndtri
 
 from engine.ages import AgeGrid, Array
+from engine.chain import Chain
 from engine.decomposition import (
     contribution_limits,
     contributions,
@@ -71,6 +72,18 @@ def test_the_standard_error_is_that_of_every_count_moved_by_itself(name: str, ke
     read = expected > 1e-6 * expected.max()
     np.testing.assert_allclose(found[read], expected[read], rtol=0.005)
     assert np.isnan(found[~read]).all()
+
+
+@pytest.mark.fast
+@pytest.mark.parametrize("empty", [(1, 0), (0, 1), (1, 1)])
+def test_the_standard_error_where_groups_are_joined(empty: tuple[int, int]) -> None:
+    """Nobody counted at 85-89: deaths there and at 80-84 move the rates of both ages."""
+    laws = (gompertz_panel(level=level, slope=0.09) for level in (2e-5, 3e-5))
+    pair = large(Pair(*laws))
+    for panel, is_empty in zip((pair.this, pair.that), empty, strict=True):
+        panel.exposure[18] *= 1 - is_empty
+    found = widths(contribution_limits(INDICATORS["e0"], pair.this, pair.that, PLAIN))
+    np.testing.assert_allclose(found, standard_errors("e0", pair, PLAIN), rtol=0.005)
 
 
 @pytest.mark.fast
@@ -314,6 +327,25 @@ def test_stepwise_contributions_have_simulated_limits(key: str) -> None:
     )
     expected = difference(indicator, pair.this, pair.that, PLAIN, streams=names)
     np.testing.assert_allclose(widths(whole)[0], widths(expected), rtol=0.25)
+
+
+@pytest.mark.fast
+def test_choices_are_made_on_the_populations_passed_through_as_observed() -> None:
+    """What is read off simulated counts is given the same steps of the observed ones."""
+    this, that = gompertz_panel(level=2e-5), gompertz_panel(level=3e-5)
+    seen: list[Array] = []
+
+    def redraw(observed: Chain, simulated: Chain) -> Array:
+        seen.append(observed.panel.deaths)
+        return INDICATORS["median"].value(simulated)
+
+    choosing = replace(INDICATORS["median"], redraw=redraw)
+    contribution_limits(choosing, this, that, PLAIN, streams=both(this), draws=20)
+    for given in seen:
+        np.testing.assert_array_equal(given[0, 0, 0], that.deaths)
+        np.testing.assert_array_equal(given[1, -1, 0], this.deaths)
+        np.testing.assert_array_equal(given[0, 5, 0], [*this.deaths[:5], *that.deaths[5:]])
+    assert seen
 
 
 @pytest.mark.fast
