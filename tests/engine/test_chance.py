@@ -97,6 +97,17 @@ def test_limits_hold_the_value_widen_with_the_level_and_stay_what_a_number_can_b
     assert apart.high >= wide.high
 
 
+def test_limits_of_a_part_end_at_the_whole_and_of_a_rate_at_none() -> None:
+    """Of a difference of parts they may have any sign."""
+    most = moved([0.3, -0.01], [3, 2])
+    assert limits("part", np.array(0.9), most, 0.95).high == 1
+    assert limits("part", np.array(0.9), most, 0.95, apart=True).high > 1
+    out = moved([0.001], [2], astray=0.01)
+    for kind in ("part", "gamma", "count"):
+        assert limits(kind, np.array(0.002), out, 0.95).low == 0
+    assert limits("mixed", np.array(0.002), out, 0.95).low < 0
+
+
 def test_nothing_counted_tells_no_standard_error_and_nan_passes() -> None:
     assert np.isnan(moved([0.1, 0.2], [0, 0]).se)
     low, high = limits("mixed", np.array(1.0), moved([0.1, np.nan], [3, 4]), 0.95)
