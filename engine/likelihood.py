@@ -12,7 +12,7 @@ from engine.hazards import Groups, Law, Local, local
 
 Flags = NDArray[np.bool_]
 
-STEPS = 200
+STEPS = 60
 LONGEST_STEP = 2.0  # change of the logarithm of a rate; keeps Newton from running away
 CLOSE = 1e-8  # a step so short is followed by one last full one
 SLACK = 1e-11  # by this part of its terms a log likelihood may fall from rounding
