@@ -30,10 +30,11 @@ def simulated(
     """What is not smooth, with limits from draws made block by block, so that memory does not grow
     with the batch.
 
-    The limits are bias-corrected percentiles. Against plain ones they gain most for the shortest
-    age span of half the deaths, 93 instead of 87 to 90 in 100 in small populations with single
-    ages, and lose nowhere. Limits reflected about the value would hold the most common age of age
-    groups in 64 to 80 of 100, since a number that jumps has its draws on one side of it.
+    On each side the wider of two limits is taken, of the draws' own quantiles and of those
+    corrected for bias, for each fails where the other holds: plain ones hold the shortest age span
+    of half the deaths in 83 to 88 of 100 small populations with single ages, corrected ones the
+    single age with most deaths in 87 to 88. Limits reflected about the value would hold the age
+    group with most deaths in 64 to 80, since a number that jumps has its draws on one side of it.
 
     Missing: no interval where more than 1 % of the draws lack the number.
     """
@@ -47,7 +48,7 @@ def simulated(
     for first in range(0, rows, step):
         where = slice(first, min(first + step, rows))
         for key, values in draw(stepped, where).items():
-            limits[key][:2, where] = corrected(values, observed[key][where], settings.level)
+            limits[key][:2, where] = widest(values, observed[key][where], settings.level)
             limits[key][2, where] = spread(values)
     return {
         key: bare[key].within(
@@ -101,9 +102,9 @@ def corrected(values: Array, observed: Array, level: float) -> Array:
 
     With z0 the normal quantile of the share of draws below the value (of those equal to it half
     count), the percentiles taken are those of Phi(2 z0 -+ z): where draws tend to lie below what
-    they were drawn from, so does the value, below the truth. The value itself is always held.
+    they were drawn from, so does the value, below the truth.
 
-    Missing: nan where more than 1 % of the draws are, or the value is.
+    Missing: nan where more than 1 % of the draws are.
     Source:  Efron (1987), Better bootstrap confidence intervals, Journal of the American
              Statistical Association 82, 171-185, section 2.
     """
@@ -111,9 +112,23 @@ def corrected(values: Array, observed: Array, level: float) -> Array:
     below = (np.sum(values < observed, axis=0) + np.sum(values == observed, axis=0) / 2) / known
     # a value beyond every draw is as far out as one draw more could tell
     centre = ndtri(np.clip(below, 1 / (known + 1), known / (known + 1)))
-    reach = ndtri((1 + level) / 2) * np.array([[-1.0], [1.0]])
-    low, high = quantiles(values, ndtr(2 * centre + reach))
+    return quantiles(values, ndtr(2 * centre + _reach(level)))
+
+
+def widest(values: Array, observed: Array, level: float) -> Array:
+    """The wider on each side of plain and corrected limits; the value itself is always held.
+
+    Shape, missing: as `corrected`; nan also where the value is.
+    """
+    plain = quantiles(values, ndtr(_reach(level)))
+    other = corrected(values, observed, level)
+    low, high = np.minimum(plain[0], other[0]), np.maximum(plain[1], other[1])
     return np.stack([np.minimum(low, observed), np.maximum(high, observed)])
+
+
+def _reach(level: float) -> Array:
+    """Normal quantiles of both tails, [2, 1]."""
+    return float(ndtri((1 + level) / 2)) * np.array([[-1.0], [1.0]])
 
 
 def quantiles(values: Array, shares: Array) -> Array:

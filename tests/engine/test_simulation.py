@@ -10,7 +10,7 @@ from scipy.special import ndtr
 from engine.estimates import Reason
 from engine.indicators import INDICATORS, estimate
 from engine.settings import SETTINGS
-from engine.simulation import corrected, drawn, quantiles, spread
+from engine.simulation import corrected, drawn, quantiles, spread, widest
 from tests.factories import GRIDS, codes, gompertz_panel
 
 TAILS = np.array([[0.025], [0.975]])
@@ -101,12 +101,21 @@ def test_a_bias_of_the_draws_is_taken_to_be_that_of_the_value() -> None:
     assert np.mean(plain[1] < np.exp(truth)) > 0.15
 
 
-def test_draws_equal_to_the_value_count_half_and_the_value_is_held() -> None:
+def test_draws_equal_to_the_value_count_half() -> None:
     values = np.repeat([80.0, 85.0, 90.0], [100, 200, 100])[:, None]
-    assert_array_equal(corrected(values, np.array([85.0]), 0.95)[:, 0], [80, 90])
-    for observed in (70.0, 95.0):
-        low, high = corrected(values, np.array([observed]), 0.95)[:, 0]
+    assert_array_equal(corrected(values, np.array([85.0]), 0.5)[:, 0], [81.25, 88.75])
+
+
+def test_the_wider_limit_of_each_side_is_taken_and_the_value_is_held() -> None:
+    values = np.random.default_rng(6).normal(size=(400, 1))
+    plain = quantiles(values, TAILS)
+    for observed in np.array([[-0.7], [0.0], [0.7]]):
+        other, both = corrected(values, observed, 0.95), widest(values, observed, 0.95)
+        assert_array_equal(both[0], np.minimum(plain[0], other[0]))
+        assert_array_equal(both[1], np.maximum(plain[1], other[1]))
+    for observed in np.array([[-9.0], [9.0]]):
+        low, high = widest(values, observed, 0.95)
         assert low <= observed <= high
     lost = np.where(np.arange(400)[:, None] < 5, np.nan, values)
-    assert np.isnan(corrected(lost, np.array([85.0]), 0.95)).all()
-    assert np.isnan(corrected(values, np.array([np.nan]), 0.95)).all()
+    assert np.isnan(widest(lost, np.zeros(1), 0.95)).all()
+    assert np.isnan(widest(values, np.array([np.nan]), 0.95)).all()
