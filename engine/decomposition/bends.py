@@ -16,7 +16,7 @@ def bends(indicator: Reading, line: Line, mean: Array) -> tuple[Array, Array]:
     [age moved, ..., age]: the integrals of t H and (1 - t) H, H the second derivatives.
 
     H is read by forward differences of the gradient at two nodes: enough for what corrects the
-    standard error of a contribution, not the contribution itself (within 1 % on the pairs of the
+    standard error of a contribution, not the contribution itself (within 2 % on the pairs of the
     tests, and 3 % at ages past 90 where a rate passes the bound of ax).
     """
     t = ((1 + NODES) / 2).reshape(-1, *(1,) * (mean.ndim - 1))
