@@ -51,7 +51,7 @@ def _of_counts(needs: Needs, chain: Chain) -> Rules:
     yield Reason.TOO_FEW_PERSON_YEARS, exposure.sum(axis=-1) < settings.least_exposure
     yield Reason.NO_BIRTHS, np.isnan(births).any(axis=-1)
     yield Reason.NO_WHOLE, needs.whole and not_known(panel.whole)
-    yield Reason.NO_STANDARD, needs.standard != "" and nobody(panel.standard)
+    yield Reason.NO_STANDARD, needs.standard != "" and not_held(panel.standard)
     yield Reason.NO_POPULATION, np.isnan(rates.mx).any(axis=-1)
     yield Reason.NO_DEATHS, (total == 0) & (not needs.births)  # no infant's death is a figure
     yield Reason.TOO_FEW_DEATHS, total < needs.least_deaths
@@ -83,9 +83,8 @@ def not_known(whole: Panel | None) -> NDArray[np.bool_]:
     return np.asarray(np.isnan(mx).any(axis=-1))
 
 
-def nobody(standard: Panel | None) -> NDArray[np.bool_]:
+def not_held(standard: Panel | None) -> NDArray[np.bool_]:
     """Where no standard is held, or it lacks the people of an age: [...]."""
     if standard is None:
         return np.array(True)
-    years = np.real(standard.exposure).sum(axis=-1)
-    return np.asarray(np.isnan(years) | (years == 0))
+    return np.asarray(np.isnan(np.real(standard.exposure)).any(axis=-1))
