@@ -49,7 +49,8 @@ def _fit(
         best = np.inf
         coefficients[row], penalty[row] = begin, PENALTIES[0]
         for k in range(PENALTIES.size):
-            now[:] = begin
+            if k == 0 or np.isnan(now[0]):  # else on from the curve of the penalty before
+                now[:] = begin
             settled = False
             weight = PENALTIES[k]
             for _ in range(STEPS):

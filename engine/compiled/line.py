@@ -41,7 +41,7 @@ def _contributions(
     ages = start.shape[1]
     cuts, toward = np.empty(10 + DOUBLINGS + 3 * ages), np.empty(10 + DOUBLINGS + 3 * ages)
     mx, mean = np.empty(ages), np.empty(ages)
-    room, mix = np.empty((4, ages)), np.empty((2, 1, 1, 2))
+    room, mix = np.empty((6, ages)), np.empty((2, 1, 1, 2))
     for p in range(start.shape[0]):
         mean[:] = 0.0
         size = _cuts(rules, start, end, weight, ratio, p, cuts, toward)
@@ -155,28 +155,34 @@ def _cut(t: float, sign: float, cuts: Array, toward: Array, size: int) -> int:
 
 @compiled
 def _table(rules: Rules, mx: Array, mix: Array, room: Array) -> tuple[float, float, float]:
-    """room [ax, its slope, qx, ex]; also the slope of a(1-4) in m0, the years left at the top, and
-    e0."""
-    ax, own, qx, ex = room[0], room[1], room[2], room[3]
-    top, child = mx.size - 1, 0.0
+    """Into room [ax, its slope, qx, ex, ...]; the slope of a(1-4) in m0, the years left at the top,
+    and e0."""
+    ax, own, qx, ex, per = room[0], room[1], room[2], room[3], room[4]
+    n, top, child = rules.widths, mx.size - 1, 0.0
     for x in range(top):
-        n = rules.widths[x]
-        ax[x], own[x] = n / 2, 0.0
+        ax[x] = 1 / mx[x] if n[x] / 2 * mx[x] > 1 else n[x] / 2
+    for x in range(top):
+        own[x] = -1 / mx[x] ** 2 if n[x] / 2 * mx[x] > 1 else 0.0
     if rules.first.shape[1]:
         ax[0], own[0] = by_infant_rate(rules.first, mx[0], mix[0], mix[1], 0, 0)
     if rules.child.shape[1]:
         ax[1], child = by_infant_rate(rules.child, mx[0], mix[0], mix[1], 0, 0)
-    for x in range(top):
+        own[1] = 0.0
+    for x in range(min(2, top)):
         if ax[x] * mx[x] > 1:
             ax[x], own[x] = 1 / mx[x], -1 / mx[x] ** 2
             child = 0.0 if x == 1 else child
-        q = rules.widths[x] * mx[x] / (1 + (rules.widths[x] - ax[x]) * mx[x])
+    for x in range(top):
+        per[x] = 1 / (1 + (n[x] - ax[x]) * mx[x])
+    for x in range(top):
+        q = n[x] * mx[x] * per[x]
         qx[x] = 1.0 if q > 1 else q
     left = np.nan if mx[top] == 0 else 1 / mx[top]
+    for x in range(top):
+        ex[x] = ax[x] * qx[x] + (1 - qx[x]) * n[x]
     ex[top] = left
     for x in range(top - 1, -1, -1):
-        inside = ax[x] * qx[x] + (1 - qx[x]) * rules.widths[x]
-        ex[x] = inside + (1 - qx[x]) * ex[x + 1]
+        ex[x] += (1 - qx[x]) * ex[x + 1]
     return child, left, ex[0]
 
 
@@ -191,16 +197,17 @@ def _add_slopes(
 ) -> None:
     """The gradient of e0 in mx, times a share, added to `mean`. With reach the survivors,
     d e0 / d q(x) = reach (a - n - e(x+n)) and d e0 / d a(x) = reach q."""
-    ax, own, qx, ex = room[0], room[1], room[2], room[3]
+    ax, own, qx, ex, per, reach = room[0], room[1], room[2], room[3], room[4], room[5]
     child, left, _ = _table(rules, mx, mix, room)
-    top, reach = mx.size - 1, share
+    n, top, survivors = rules.widths, mx.size - 1, share
     for x in range(top):
-        n = rules.widths[x]
-        by_q = reach * (ax[x] - n - ex[x + 1])
-        per = n / (1 + (n - ax[x]) * mx[x]) ** 2
-        by_ax = reach * qx[x] + by_q * per * mx[x] ** 2
-        mean[x] += by_q * per + by_ax * own[x]
-        if x == 1 and child != 0:
-            mean[0] += by_ax * child
-        reach *= 1 - qx[x]
-    mean[top] -= reach * left * left
+        reach[x] = survivors
+        survivors *= 1 - qx[x]
+    for x in range(top):
+        by_rate = reach[x] * (ax[x] - n[x] - ex[x + 1]) * n[x] * per[x] * per[x]
+        by_ax = reach[x] * qx[x] + by_rate * mx[x] * mx[x]
+        mean[x] += by_rate + by_ax * own[x]
+    if child != 0:
+        by_rate = reach[1] * (ax[1] - n[1] - ex[2]) * n[1] * per[1] * per[1]
+        mean[0] += (reach[1] * qx[1] + by_rate * mx[1] * mx[1]) * child
+    mean[top] -= survivors * left * left

@@ -54,6 +54,8 @@ def death_rates(deaths: Array, exposure: Array) -> Rates:
     array([0.003, 0.025, 0.025])
     """
     empty = exposure == 0
+    if not empty.any():  # the usual case: nothing to join
+        return Rates(deaths / exposure, deaths, exposure, empty)
     pooled = np.array(deaths, dtype=np.result_type(deaths, float))
     with np.errstate(divide="ignore", invalid="ignore"):
         for x in reversed(range(1, pooled.shape[-1])):
