@@ -177,9 +177,10 @@ def _assemble(grid: AgeGrid, mx: Array, ax: Array, closed: Array) -> LifeTable:
     Tx = np.flip(np.cumsum(np.flip(Lx, axis=-1), axis=-1), axis=-1)
     ex = np.empty_like(Lx)
     ex[..., -1] = ax[..., -1]
+    survive = 1 - closed
+    lived = a * closed + survive * n
     for x in reversed(range(len(grid) - 1)):
-        q = closed[..., x]
-        ex[..., x] = a[..., x] * q + (1 - q) * (n[x] + ex[..., x + 1])
+        ex[..., x] = lived[..., x] + survive[..., x] * ex[..., x + 1]
     qx = np.concatenate([closed, one], axis=-1)
     return LifeTable(grid, mx, ax, qx, lx, dx, Lx, Tx, ex)
 
