@@ -33,7 +33,7 @@ REPORT = """# How often intervals hold the truth
 
 By `python -m tests.studies.coverage`, 2026-12-01, settings almanac-2, women under one law of
 rates, intervals at 95 %. Smooth numbers and counts: 4,000 replicates (a figure is sure to about
-0.7); simulated ones 400 to 600 (to about 2), each of 400 draws. A cell has the per cent of
+0.7); simulated ones 400 (to about 2.2), each of 400 draws. A cell has the per cent of
 intervals that hold the truth with abridged, then with single ages. In brackets, where one tail is
 more than 4 % and twice the other: wholly above the truth, wholly below it. After a minus sign, from
 5 % on: the per cent of populations without an interval.
