@@ -181,7 +181,7 @@ FAMILY = (
         definition=(
             "The part of the years lost per death on average (e-dagger) that goes with deaths above"
             " its threshold age, where a life saved draws ages at death apart. With the part of"
-            " early deaths it makes up the whole."
+            " early deaths it makes up the whole. Groups of five years make it up to 0.2 larger."
         ),
         formula="e† late = e† - e† early",
         source=SEPARATION,
@@ -221,7 +221,7 @@ FAMILY = (
         definition=(
             "The age below which a life saved lowers the years lost per death on average"
             " (e-dagger), and above which it raises them: saving lives below it makes ages at death"
-            " more alike. Groups of five years move it by up to 0.3."
+            " more alike. Groups of five years make it up to 0.3 lower."
         ),
         formula="the x with e†(x) / e(x) - log l(x) = 1, e†(x) the years lost per death from x on",
         source=SEPARATION,
@@ -237,7 +237,7 @@ FAMILY = (
         definition=(
             "The age below which a life saved lowers the relative unevenness of length of life (H),"
             " and above which it raises it. Since a life saved lengthens life as well, it lies"
-            " above the threshold age of years lost. Groups of five years move it by up to 0.3."
+            " above the threshold age of years lost. Groups of five years make it up to 0.3 lower."
         ),
         formula=(
             "the x with e†(x) / e(x) - log l(x) = 1 + H, e†(x) the years lost per death from x on"

@@ -12,6 +12,7 @@ from engine.indicators.expectancy import YEARS
 from engine.tables import LifeTable
 
 EVENLY = "Inside an age group the survivors are taken to fall evenly."
+QUARTERS = "Groups of five years move it by up to a quarter of a year."
 
 
 def ages_at(table: LifeTable, reach: Array) -> Array:
@@ -78,7 +79,7 @@ FAMILY = (
         unit=YEARS,
         definition=(
             "The age that three quarters of those born would live to see, while one quarter would"
-            f" not, if the death rates of the year held for all their lives. {EVENLY}"
+            f" not, if the death rates of the year held for all their lives. {EVENLY} {QUARTERS}"
         ),
         formula="Q1 = x + n (l(x) - 3/4) / d(x), x to x+n the group with l(x) > 3/4 >= l(x+n)",
         source=f"{WILMOTH}; {LINEAR}",
@@ -110,7 +111,7 @@ FAMILY = (
         unit=YEARS,
         definition=(
             "The age that one quarter of those born would live to see if the death rates of the"
-            f" year held for all their lives. {EVENLY}"
+            f" year held for all their lives. {EVENLY} {QUARTERS}"
         ),
         formula="Q3 = x + n (l(x) - 1/4) / d(x), x to x+n the group with l(x) > 1/4 >= l(x+n)",
         source=f"{WILMOTH}; {LINEAR}",
@@ -126,7 +127,8 @@ FAMILY = (
         definition=(
             "The years between the age that three quarters of those born would live to see and the"
             " age that one quarter would, if the death rates of the year held for all their lives:"
-            f" the middle half of deaths falls between the two. {EVENLY}"
+            f" the middle half of deaths falls between the two. {EVENLY} Groups of five years move"
+            " it by up to 0.4."
         ),
         formula="IQR = Q3 - Q1",
         source=f"{WILMOTH}; {LINEAR}",
@@ -142,7 +144,8 @@ FAMILY = (
         definition=(
             "The fewest years of age into which half of the deaths would fall if the death rates"
             " of the year held for all lives: the shorter, the more deaths are drawn together."
-            " Inside an age group deaths are taken to fall evenly."
+            " Inside an age group deaths are taken to fall evenly. Groups of five years move it by"
+            " up to half a year."
         ),
         formula=(
             "C50 = the least y - x with l(x) - l(y) = 1/2, y at most the open age, l(x) linear"

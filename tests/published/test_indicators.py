@@ -47,7 +47,7 @@ FIVE_YEARS = (  # what five-year groups make of Danish figures, as the definitio
     ("lower_quartile", -0.25, 0.25),
     ("upper_quartile", -0.25, 0.25),
     ("iqr", -0.4, 0.4),
-    ("shortest_half", -0.55, 0.55),
+    ("shortest_half", -0.52, 0.52),
     ("edagger_early", -0.05, 0.05),
     ("edagger_late", 0.0, 0.2),
     ("threshold_edagger", -0.3, 0.0),
