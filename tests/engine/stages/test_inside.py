@@ -10,6 +10,7 @@ from engine.stages.inside import (
     INSIDE,
     Lived,
     Neighbours,
+    _at_rest,
     _graduated,
     bounds,
     constant_rate,
@@ -139,6 +140,22 @@ def test_the_pullback_is_the_complex_step_whatever_the_rates(rates: list[float],
     g = np.where(inner, np.random.default_rng(seed).normal(size=21), 0.0)
     expected = complex_step(lambda rates: (found(rates).ax * g).sum(axis=-1), m)
     assert largest_error(found(m).pull(g), expected) < 1e-9
+
+
+def test_a_row_rests_with_its_derivative_and_for_itself() -> None:
+    """The value of the first row rests at once, its derivative halves its way; the second row has
+    its own way, which the first does not lengthen."""
+    start, seen = np.array([[1.0 + 1j], [4.0 + 0j]]), []
+
+    def once(values: np.ndarray, some: np.ndarray) -> np.ndarray:
+        seen.append(list(some))
+        return (1 + values.real) / 2 + 1j * values.imag / 2 + 1j
+
+    found = _at_rest(once, start)
+    np.testing.assert_allclose(found, [[1 + 2j], [1 + 2j]], rtol=1e-14)
+    alone = _at_rest(once, start[:1])
+    np.testing.assert_array_equal(alone, found[:1])
+    assert seen[0] == [0, 1]
 
 
 def test_a_group_that_is_not_read_passes_no_gap_on() -> None:
