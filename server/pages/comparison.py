@@ -209,6 +209,7 @@ def _cautions(found: Comparison) -> tuple[Caution, ...]:
             basis.law(found.settings, found.grid.open_age) if modelled else None,
         ],
         below=[
+            basis.safe_side(indicators.find(found.question.of), fewest),
             say.regrouped(
                 [tables.named(found, of).whole for of in found.regrouped],
                 _("{count} groups", count=len(found.grid)),
@@ -259,7 +260,7 @@ def _choice(found: Comparison) -> Choice:
         this=question.this,
         that=question.that,
         of=question.of,
-        indicators=offered(question.of),
+        indicators=offered(question.of, compared=True),
         figures=question.figures,
         settings=question.settings,
     )

@@ -6,6 +6,7 @@ from typing import ClassVar
 import numpy as np
 
 from engine.indicators import INDICATORS
+from engine.settings import span
 from server.charts.chart import Chart
 from server.exports.table import Table
 from server.pages import frames
@@ -214,6 +215,7 @@ def _cautions(found: Findings) -> tuple[Caution, ...]:
             basis.early_end(panel.grid.open_age) if found.chain.open_low else None,
         ],
         below=[
+            basis.safe_side(INDICATORS["e0"], float(panel.exposure.sum())),
             basis.no_deaths(empty),
             basis.joined(joined),
             basis.regrouped(before.period)
@@ -240,10 +242,10 @@ def _rows(found: Findings) -> str:
 def _further(found: Findings) -> tuple[Sentence, ...]:
     """Where to go from here: the same people earlier, the other sex, the whole, the years."""
     heading, held, asked = found.heading, found.holdings, found.question
-    of, links = found.of, []
+    of, links, years = found.of, [], found.settings.years
 
     def compared(that: PopulationYear, words: str) -> None:
-        if that in held.status and that != of:
+        if that != of and held.all_of(that, years):
             question = ComparisonQuestion(of, that, "e0", asked.figures, asked.settings)
             links.append(
                 Piece(words, address(heading.collection.code, heading.edition.number, question))
@@ -251,8 +253,9 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
 
     if found.before:
         compared(found.before.of, _("against {year}", year=found.before.period))
-    first = PopulationYear(of.area, of.sex, held.periods[0])
-    compared(first, _("against {year}", year=first.period))
+    if len(held.periods) >= years:
+        first = PopulationYear(of.area, of.sex, held.periods[years - 1])
+        compared(first, _("against {year}", year=names.years(span(first.period, years))))
     for sex in ("f", "m"):
         if sex != of.sex:
             compared(
@@ -272,11 +275,11 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
         figures=asked.figures,
         settings=asked.settings,
     )
-    years = Piece(
+    course = Piece(
         _("Life expectancy from {first} to {last}", first=trend.first, last=trend.last),
         address(heading.collection.code, heading.edition.number, trend),
     )
-    return basis.further(tuple(links), years)
+    return basis.further(tuple(links), course)
 
 
 def _choice(found: Findings) -> Choice:

@@ -174,7 +174,8 @@ def _cautions(found: Series) -> tuple[Caution, ...]:
     small = [
         _who(found, line)
         for line in range(len(found.lines))
-        if tables.widest(found.estimate, line) > abs(float(found.change.value[line]))
+        if not found.indicator.needs.whole
+        and tables.widest(found.estimate, line) > abs(float(found.change.value[line]))
     ]
     return frames.cautions(
         beside=[
@@ -184,7 +185,10 @@ def _cautions(found: Series) -> tuple[Caution, ...]:
             say.small(small),
             *_missing(found),
         ],
-        below=basis.reading(found.settings),
+        below=(
+            basis.safe_side(found.indicator, found.fewest),
+            *basis.reading(found.settings),
+        ),
     )
 
 

@@ -63,6 +63,7 @@ class Series:
     middle: tuple[str, ...]  # [line]: the year with a value in the middle of them; "" where none
     earlier: Estimate  # [line]: the change up to the middle year
     later: Estimate  # [line]: the change from it on
+    fewest: float  # person-years of the smallest population drawn
     headline: PopulationYear  # the first line's newest figure, by which a newer edition is measured
     moved: Moved | None
 
@@ -110,6 +111,7 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
         change=changes[0],
         earlier=changes[1],
         later=changes[2],
+        fewest=min(float(one.panel.exposure.sum()) for one in found if one),
         headline=headline,
         moved=moved(
             session,

@@ -5,10 +5,12 @@ A caution is (word, text), or None where there is nothing to warn of.
 
 from collections.abc import Sequence
 
+from engine.indicators import Indicator
 from engine.settings import Settings
 from server.sentences.names import listed
 from server.sentences.numbers import whole
 from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.reasons import caution
 from server.sentences.text import _, n_
 
 Told = tuple[str, str] | None
@@ -80,6 +82,12 @@ def pooled(settings: Settings) -> Told:
         count=settings.years - 1,
         all=settings.years,
     )
+
+
+def safe_side(indicator: Indicator, lived: float) -> Told:
+    """That intervals of a population so small are wider than their level asks for."""
+    said = caution(indicator, lived)
+    return (_("Wide intervals"), said) if said else None
 
 
 def no_deaths(ages: Sequence[str]) -> Told:
