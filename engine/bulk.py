@@ -106,22 +106,28 @@ def tables(panel: Panel, settings: Settings, *, by: Maker | None = None) -> Tabl
         columns = dict(zip(COLUMNS, (part.reshape(*batch, -1) for part in found), strict=True))
         numbers = {key: read[:, k].reshape(batch).copy() for k, key in enumerate(NUMBERS)}
         return Tables(LifeTable(panel.grid, **columns), numbers, version(by))
-    rows = flat(panel)
-    parts = []
-    for where in _blocks(math.prod(batch), len(panel.grid)):
-        chain = run(rows[where], settings)
-        with np.errstate(all="ignore"):
-            parts.append((chain.table, [INDICATORS[key].value(chain) for key in NUMBERS]))
-    grid = parts[0][0].grid if parts else panel.grid
-    columns = {
-        name: np.concatenate([getattr(table, name) for table, _ in parts]).reshape(*batch, -1)
-        for name in COLUMNS
-    }
-    numbers = {
-        key: np.concatenate([values[k] for _, values in parts]).reshape(batch)
-        for k, key in enumerate(NUMBERS)
-    }
+    rows, count = flat(panel), math.prod(batch)
+    grid = run(rows[:1], settings).table.grid  # a law's is longer than the panel's
+    columns = {name: np.empty((count, len(grid))) for name in COLUMNS}
+    numbers = {key: np.empty(count) for key in NUMBERS}
+    fill(rows, settings, columns, numbers)
+    columns = {name: column.reshape(*batch, len(grid)) for name, column in columns.items()}
+    numbers = {key: values.reshape(batch) for key, values in numbers.items()}
     return Tables(LifeTable(grid, **columns), numbers, version(by))
+
+
+def fill(
+    rows: Panel, settings: Settings, columns: dict[str, Array], numbers: dict[str, Array]
+) -> None:
+    """Tables of populations in a row, by the numpy engine, into columns [row, age] and numbers
+    [row] that are there already."""
+    for where in _blocks(len(rows.deaths), len(rows.grid)):
+        chain = run(rows[where], settings)
+        for name, column in columns.items():
+            column[where] = getattr(chain.table, name)
+        with np.errstate(all="ignore"):
+            for key, values in numbers.items():
+                values[where] = INDICATORS[key].value(chain)
 
 
 def simulated(

@@ -175,14 +175,19 @@ def _assemble(grid: AgeGrid, mx: Array, ax: Array, closed: Array) -> LifeTable:
     person_years = n * lx[..., 1:] + a * dx[..., :-1]
     Lx = np.concatenate([person_years, lx[..., -1:] * ax[..., -1:]], axis=-1)
     Tx = np.flip(np.cumsum(np.flip(Lx, axis=-1), axis=-1), axis=-1)
-    ex = np.empty_like(Lx)
-    ex[..., -1] = ax[..., -1]
-    survive = 1 - closed
-    lived = a * closed + survive * n
-    for x in reversed(range(len(grid) - 1)):
-        ex[..., x] = lived[..., x] + survive[..., x] * ex[..., x + 1]
+    ex = _from_the_top(a * closed + (1 - closed) * n, 1 - closed, ax[..., -1:])
     qx = np.concatenate([closed, one], axis=-1)
     return LifeTable(grid, mx, ax, qx, lx, dx, Lx, Tx, ex)
+
+
+def _from_the_top(lived: Array, px: Array, last: Array) -> Array:
+    """e_x = lived + p_x e_{x+n}: `lived` the years inside a group of those who enter it."""
+    # age first, so that each step runs along memory
+    ex = np.ascontiguousarray(np.moveaxis(np.concatenate([lived, last], axis=-1), -1, 0))
+    reach = np.ascontiguousarray(np.moveaxis(px, -1, 0))
+    for x in reversed(range(len(reach))):
+        ex[x] += reach[x] * ex[x + 1]
+    return np.ascontiguousarray(np.moveaxis(ex, 0, -1))
 
 
 def _require_ages(grid: AgeGrid, **columns: Array) -> None:

@@ -8,6 +8,7 @@ from numpy.testing import assert_allclose, assert_array_equal
 
 from engine import bulk
 from engine.ages import AgeGrid
+from engine.chain import run
 from engine.panel import Panel
 from engine.settings import SETTINGS, Settings
 from engine.smoothing import Basis
@@ -154,6 +155,14 @@ def test_what_compiled_code_cannot_follow_is_refused_by_name() -> None:
         bulk.tables(panel, SETTINGS["almanac-1-keyfitz"], by="compiled")
     left_open = bulk.tables(panel, SETTINGS["almanac-1-keyfitz"])
     assert left_open.version == bulk.version("numpy")
+
+
+def test_a_table_on_which_a_law_stands_is_made_by_numpy() -> None:
+    panel = gompertz_panel(slope=np.array([0.09, 0.1, 0.11]))
+    settings = SETTINGS["almanac-1-gompertz"]
+    found, chain = bulk.tables(panel, settings), run(panel, settings)
+    assert found.table.grid == chain.table.grid
+    assert_array_equal(found.table.ex, chain.table.ex)
 
 
 def test_the_record_says_what_made_it() -> None:
