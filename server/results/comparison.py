@@ -90,7 +90,7 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
     loaded = load(session, collection, number, [*asked, *years], beside)
     for wanted in (question.this, question.that):
         if wanted not in loaded:
-            raise held.lacks(wanted)
+            raise held.lacks(wanted, settings.years)
     if both not in loaded:
         both = None
     grid = _shared_grid(loaded, asked)

@@ -63,9 +63,29 @@ class Holdings:
         if wanted not in self.status:
             raise self.lacks(wanted)
 
-    def lacks(self, wanted: PopulationYear) -> NotInEdition:
-        """What is said of a population-year without counts, or with one measure alone."""
+    def all_of(self, wanted: PopulationYear, years: int) -> bool:
+        """Whether the edition holds it and the years before it that are pooled with it."""
+        if wanted not in self.status or int(wanted.period) < years:
+            return False
+        pooled = span(wanted.period, years)
+        return all(replace(wanted, period=period) in self.status for period in pooled)
+
+    def lacks(self, wanted: PopulationYear, years: int = 1) -> NotInEdition:
+        """What is said of a population-year without counts, with one measure alone, or without one
+        of the years that are pooled with it."""
         periods = self.periods
+        if wanted in self.status and years > 1:
+            return NotInEdition(
+                _(
+                    "These settings add up {years} years, and this edition does not hold all of"
+                    " them up to {code}. Its years are {first} to {last}. Choose a later year, or"
+                    " settings of single years.",
+                    years=years,
+                    code=wanted.code,
+                    first=periods[0],
+                    last=periods[-1],
+                )
+            )
         return NotInEdition(
             _(
                 "This edition does not hold {code}, or not both its deaths and its person-years."
@@ -83,7 +103,7 @@ class Holdings:
         """The same area and sex a year before, or as many as are pooled, where the edition holds
         it."""
         before = replace(wanted, period=f"{int(wanted.period) - years:04}")
-        return before if before in self.status else None
+        return before if self.all_of(before, years) else None
 
 
 def holdings(session: Session, collection: str, number: int) -> Holdings:

@@ -46,7 +46,8 @@ class Implied:
 
     @property
     def known(self) -> bool:
-        return bool(np.isfinite(self.population.ratio.value))
+        """Whether there is a ratio with limits: an area that is all of its whole has none."""
+        return bool(np.isfinite(self.population.ratio.low))
 
 
 def fitted(panel: Panel, level: float) -> tuple[Fitted, ...]:

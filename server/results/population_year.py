@@ -91,7 +91,7 @@ def population_year(
     beside = Beside.of(settings, held.areas)
     loaded = load(session, collection, number, wanted, beside)
     if question.of not in loaded:
-        raise held.lacks(question.of)
+        raise held.lacks(question.of, settings.years)
     panel = loaded[question.of].panel
     chain = run(panel, settings)
     return Findings(

@@ -111,7 +111,7 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
         change=changes[0],
         earlier=changes[1],
         later=changes[2],
-        fewest=min(float(one.panel.exposure.sum()) for one in found if one),
+        fewest=min((float(one.panel.exposure.sum()) for one in found if one), default=np.nan),
         headline=headline,
         moved=moved(
             session,
