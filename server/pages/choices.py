@@ -32,11 +32,18 @@ def offer(held: Holdings) -> Offer:
     )
 
 
-def indicators(asked: str) -> Grouped:
+def indicators(asked: str, *, compared: bool = False) -> Grouped:
     """Every indicator of the registry in its group; the one asked for too, where it names ages or a
-    standard of its own."""
+    standard of its own. `compared`: without those of which no two compare."""
     groups = tuple(
-        (_(group.label), tuple((one.key, _(one.label)) for one in group.indicators))
+        (
+            _(group.label),
+            tuple(
+                (one.key, _(one.label))
+                for one in group.indicators
+                if not (compared and one.needs.whole)
+            ),
+        )
         for group in GROUPS
     )
     listed = {key for _label, options in groups for key, _text in options}

@@ -242,7 +242,7 @@ def _bars(
         y_text=tuple(
             number(at, decimals_of(shown), signed=bottom < 0) if at else "0" for at in shown
         ),
-        hover="%{customdata}: %{y:.2f}",
+        hover=f"%{{customdata}}: %{{y:.{of.decimals}f}}",
         table="contributions",
         series=(
             Series(

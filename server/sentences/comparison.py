@@ -13,6 +13,7 @@ from server.sentences.movements import (
     movement,
     shown,
     size_limits,
+    with_unit,
     years,
 )
 from server.sentences.numbers import number
@@ -207,12 +208,7 @@ def _amount(of: Answer, *, signed: bool = False) -> str:
     if unit.key == "years" and not signed:
         return years(float(of.difference.value), unit.decimals)
     value = unit.scale * float(of.difference.value)
-    text = number(value if signed else abs(value), unit.decimals, signed=signed)
-    if unit.key == "ratio":
-        return text
-    if unit.label.startswith("%"):
-        return f"{text}\N{NO-BREAK SPACE}" + _("percentage points")
-    return f"{text}\N{NO-BREAK SPACE}{_(unit.label)}"
+    return with_unit(number(value if signed else abs(value), unit.decimals, signed=signed), unit)
 
 
 def _size(of: Answer) -> Piece:

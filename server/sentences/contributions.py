@@ -126,7 +126,7 @@ def remainder(value: float, difference: float) -> str:
     """Why a row of its own stands beside the ages; empty where rounding is all there is."""
     if not math.isfinite(value) or abs(value) <= 1e-9 * max(abs(difference), 1e-9):
         return ""
-    return _("rule of the first year, or a law's weights")
+    return _("no rate: ages of the people, rule of the first year, or a law's weights")
 
 
 def arithmetic() -> tuple[str, str]:

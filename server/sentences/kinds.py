@@ -4,10 +4,10 @@ import math
 
 from engine.detectable import pooled_years, smallest_change
 from engine.estimates import Estimate
-from engine.indicators import INDICATORS, Indicator
+from engine.indicators import INDICATORS, Indicator, Unit
 from engine.settings import Settings
 from engine.shift import ShiftSqueeze
-from server.sentences.movements import Movement, movement, years
+from server.sentences.movements import Movement, movement, with_unit, years
 from server.sentences.numbers import number, whole
 from server.sentences.pieces import Sentence, phrase
 from server.sentences.text import _
@@ -87,10 +87,7 @@ def could_be_seen(indicator: Indicator, change: Estimate, settings: Settings) ->
     se, unit = float(change.se), indicator.unit
     if not math.isfinite(se) or movement(change, unit) is not Movement.NOT_CLEAR:
         return ()
-    least = unit.scale * float(smallest_change(change.se, settings.level))
-    size = years(least, unit.decimals) if unit.key == "years" else number(least, unit.decimals)
-    if unit.key not in ("years", "ratio"):
-        size = f"{size}\N{NO-BREAK SPACE}{_(unit.label)}"
+    size = _size(unit.scale * float(smallest_change(change.se, settings.level)), unit)
     first = _("A change of {size} would have been seen four times out of five.", size=size)
     needed = float(pooled_years(change.value, change.se, settings.level)) * settings.years
     if not needed <= NO_POOL:
@@ -109,4 +106,16 @@ def could_be_seen(indicator: Indicator, change: Estimate, settings: Settings) ->
         ),
         first=first,
         needed=whole(needed),
+    )
+
+
+def _size(least: float, unit: Unit) -> str:
+    """The smallest change that could have been seen; one that would print as 0 by a bound."""
+    bound = 10.0**-unit.decimals
+    text = number(max(least, bound), unit.decimals)
+    size = years(max(least, bound), unit.decimals) if unit.key == "years" else with_unit(text, unit)
+    return (
+        size
+        if number(least, unit.decimals) != number(0, unit.decimals)
+        else _("less than {bound}", bound=size)
     )

@@ -1,5 +1,6 @@
 """How figures are made, as the registries state it."""
 
+from engine.decomposition import NOT_DECOMPOSED
 from engine.indicator import Indicator
 from engine.settings import Settings
 from server.sentences.numbers import number, whole
@@ -26,6 +27,12 @@ def interval(one: Indicator) -> str:
     if kind == "count":
         return _(
             "Exact: a count, taken as Poisson, over births taken as known. {why}",
+            why=_(one.why_not_smooth),
+        )
+    if one.key in NOT_DECOMPOSED:
+        return _(
+            "Not smooth, so by simulation, deaths drawn as Poisson; a difference is not shared out "
+            "over ages. {why}",
             why=_(one.why_not_smooth),
         )
     if not one.smooth:

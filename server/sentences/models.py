@@ -22,7 +22,8 @@ def none_fits() -> Sentence:
 def implied(ratio: Estimate, age: int, whole_area: str) -> Sentence:
     """Whether deaths and people at the highest ages fit together, as in the larger area."""
     percent, low, high = (100 * (float(part) - 1) for part in (ratio.value, ratio.low, ratio.high))
-    limits = interval(low, high, 0, signed=True)
+    decimals = 0 if abs(percent) >= 1 else 1
+    limits = interval(low, high, decimals, signed=True)
     if low <= 0 <= high:
         return phrase(
             _(
@@ -47,7 +48,7 @@ def implied(ratio: Estimate, age: int, whole_area: str) -> Sentence:
             " very old of this area differ; a few per cent tell nothing."
         )
     )
-    size = number(abs(percent), 0)
+    size = number(abs(percent), decimals)
     return phrase(text, age=str(age), area=whole_area, percent=size, interval=limits)
 
 
@@ -64,7 +65,15 @@ def out_of_reach() -> str:
 
 
 def avoid(ages: str, deaths: float) -> Sentence:
-    """Where the fewest deaths make a month."""
+    """Where the fewest deaths make a month; in a small population not one whole death may do."""
+    if deaths < 1:
+        return phrase(
+            _(
+                "A month of life expectancy takes fewest deaths in the age group {ages}: one fewer"
+                " there is more than enough, all other ages as they are."
+            ),
+            ages=ages,
+        )
     return phrase(
         _(
             "A month of life expectancy takes fewest deaths in the age group {ages}: {deaths} fewer"

@@ -52,6 +52,14 @@ def shown(estimate: Estimate, unit: Unit, *, signed: bool = False) -> str:
     return number(unit.scale * float(estimate.value), unit.decimals, signed=signed)
 
 
+def with_unit(text: str, unit: Unit) -> str:
+    """An amount of change and its unit: percentage points of a percentage, nothing of a ratio."""
+    if unit.label == "ratio":
+        return text
+    label = _("percentage points") if unit.label.startswith("%") else _(unit.label)
+    return f"{text}\N{NO-BREAK SPACE}{label}"
+
+
 def has_interval(estimate: Estimate) -> bool:
     return bool(np.isfinite(estimate.low) and np.isfinite(estimate.high))
 

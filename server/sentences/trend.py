@@ -14,6 +14,7 @@ from server.sentences.movements import (
     movement,
     shown,
     size_limits,
+    with_unit,
     years,
 )
 from server.sentences.numbers import number
@@ -52,18 +53,12 @@ class Course:
         unit = self.indicator.unit
         if unit.key == "years":
             return years(float(change.value), unit.decimals)
-        return self._with_unit(number(abs(unit.scale * float(change.value)), unit.decimals))
+        return with_unit(number(abs(unit.scale * float(change.value)), unit.decimals), unit)
 
     def signed(self, change: Estimate) -> str:
         """A change with its sign and its unit."""
-        return self._with_unit(shown(change, self.indicator.unit, signed=True))
-
-    def _with_unit(self, text: str) -> str:
         unit = self.indicator.unit
-        if unit.key == "ratio":
-            return text
-        label = _("percentage points") if unit.label.startswith("%") else _(unit.label)
-        return f"{text}\N{NO-BREAK SPACE}{label}"
+        return with_unit(shown(change, unit, signed=True), unit)
 
 
 def answer(course: Course | None, label: str, who: str) -> Sentence:
