@@ -46,10 +46,15 @@ def interval(one: Indicator) -> str:
         "part": _("by the gamma law, within 0 and the whole"),
         "gamma": _("by the gamma law, exact where every death weighs the same"),
     }
+    differences = (
+        _("Two of them do not compare, so no difference is given.")
+        if one.needs.whole
+        else _("Differences are shared out over ages.")
+    )
     return _(
-        "Smooth: {way}, from its slope in every death rate, deaths taken as Poisson. Differences "
-        "are shared out over ages.",
+        "Smooth: {way}, from its slope in every death rate, deaths taken as Poisson. {differences}",
         way=ways[kind],
+        differences=differences,
     )
 
 
