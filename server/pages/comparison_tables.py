@@ -2,11 +2,12 @@
 
 from collections.abc import Sequence
 
+from engine.estimates import Reason
 from engine.indicators import GROUPS, find
 from engine.settings import span
 from server.exports.table import Cell, Column, Row, Table
 from server.pages.cells import columns, number, triple
-from server.pages.population_year_tables import what_it_counts, why_missing
+from server.pages.population_year_tables import about, called, what_it_counts, why_missing
 from server.results.comparison import Comparison, Side
 from server.results.estimating import COMPARED, USUAL
 from server.results.loading import Shared
@@ -37,7 +38,7 @@ def figures(found: Comparison) -> Table:
 def further(found: Comparison) -> tuple[Table, ...]:
     """All other indicators, a table for each group of the registry."""
     return tuple(
-        _figures(found, f"figures-{group.key}", _(group.question), keys)
+        _figures(found, f"figures-{group.key}", about(group), keys, said=())
         for group in GROUPS
         if (
             keys := [
@@ -47,7 +48,14 @@ def further(found: Comparison) -> tuple[Table, ...]:
     )
 
 
-def _figures(found: Comparison, name: str, title: str, keys: Sequence[str]) -> Table:
+def _figures(
+    found: Comparison,
+    name: str,
+    title: str,
+    keys: Sequence[str],
+    *,
+    said: Sequence[Reason] = (Reason.OPEN_GROUP_TOO_LARGE,),
+) -> Table:
     both = pair(found)
     heads = (
         Column("indicator", _("Indicator")),
@@ -66,7 +74,7 @@ def _figures(found: Comparison, name: str, title: str, keys: Sequence[str]) -> T
         key: [found.this.estimates[key], found.that.estimates[key], found.difference[key]]
         for key in keys
     }
-    note = " ".join([note, *why_missing(shown, found.settings)])
+    note = " ".join([note, *why_missing(shown, found.settings, said)])
     return Table(name, title, heads, tuple(_figure_row(found, key) for key in keys), note)
 
 
@@ -83,8 +91,8 @@ def _figure_row(found: Comparison, key: str) -> Row:
         cells += triple(side, indicator.unit, found.settings)
     return Row(
         tuple(cells),
-        second=what_it_counts(key, found.settings),
-        shown=_(indicator.label),
+        second=what_it_counts(key, found.settings, found.grid),
+        shown=called(key, found.grid),
         decimals=indicator.unit.decimals,
     )
 

@@ -131,14 +131,7 @@ def _implied(found: Findings) -> Sentence:
     if of is None or not of.known:
         return ()
     population = of.population
-    return models_say.implied(population.ratio, population.age, _parent(found))
-
-
-def _parent(found: Findings) -> str:
-    """Name of the area that this one is part of; empty where there is none."""
-    areas = found.holdings.areas
-    parent = next((area.parent for area in areas if area.code == found.of.area), "")
-    return found.holdings.name(parent) if parent else ""
+    return models_say.implied(population.ratio, population.age, tables.whole_of(found))
 
 
 def _laws(found: Findings) -> Sentence:
@@ -193,7 +186,7 @@ def _lead(found: Findings) -> tuple[Sentence, ...]:
 
 
 def _cautions(found: Findings) -> tuple[Caution, ...]:
-    before, rate = found.before, found.chain.rates
+    before, rate, whole = found.before, found.chain.rates, tables.whole_of(found)
     panel = found.loaded.panel
     joined = [label for label, is_so in zip(panel.grid.labels, rate.joined, strict=True) if is_so]
     empty = [
@@ -211,7 +204,7 @@ def _cautions(found: Findings) -> tuple[Caution, ...]:
             basis.provisional(provisional),
             basis.few_person_years(float(panel.exposure.sum()), found.settings),
             basis.law(found.settings, panel.grid.open_age) if found.chain.modelled else None,
-            basis.borrowed(panel.grid.open_age, _parent(found)) if found.chain.borrowed else None,
+            basis.borrowed(panel.grid.open_age, whole) if found.chain.borrowed else None,
             basis.early_end(panel.grid.open_age) if found.chain.open_low else None,
         ],
         below=[

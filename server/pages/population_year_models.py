@@ -5,7 +5,7 @@ import numpy as np
 from engine.estimates import Estimate
 from engine.indicators import find
 from engine.laws import Fit
-from server.exports.table import Cell, Column, Row, Table
+from server.exports.table import Cell, Column, Gap, Row, Table
 from server.pages.cells import columns, count, number, triple
 from server.results.models import MOVED, Fitted
 from server.results.population_year import Findings
@@ -23,7 +23,7 @@ def laws(found: Findings) -> Table:
         *columns("slope", _("rise"), 1, unit=_("% per year of age")),
         Column("background", _("at all ages alike"), _("per 100,000"), 1),
         Column("deviance", _("deviance"), decimals=1),
-        Column("free", _("age groups less parameters"), decimals=0),
+        Column("free", _("age groups"), _("less parameters"), 0),
         Column("aic", _("AIC"), decimals=1),
     )
     rows = tuple(_law(one) for one in found.laws if one.found)
@@ -99,4 +99,7 @@ def avoidable(found: Findings) -> Table:
         "Deaths fewer at one age that make life expectancy of {who} a month longer",
         who=names.sex_and_year(found.of.sex, found.period),
     )
-    return Table("avoid", title, heads, rows, say.exchange())
+    note = say.exchange()
+    if any(isinstance(cell, Gap) and cell.reason for row in rows for cell in row.cells):
+        note += " " + _("Where there is no number, not even all deaths of that age make a month.")
+    return Table("avoid", title, heads, rows, note)

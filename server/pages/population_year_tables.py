@@ -4,9 +4,11 @@ from collections.abc import Mapping, Sequence
 
 import numpy as np
 
+from engine.ages import AgeGrid
 from engine.estimates import Estimate, Reason
-from engine.indicators import GROUPS, find
+from engine.indicators import GROUPS, Group, find
 from engine.settings import Settings
+from engine.standardisation import used
 from server.exports.table import Cell, Column, Gap, GapKind, Row, Table
 from server.pages.cells import columns, count, number, triple
 from server.results.estimating import USUAL
@@ -28,13 +30,25 @@ def figures(found: Findings) -> Table:
 def further(found: Findings) -> tuple[Table, ...]:
     """All other numbers, a table for each group of the registry."""
     return tuple(
-        _figures(found, f"figures-{group.key}", _(group.question), keys)
+        _figures(found, f"figures-{group.key}", about(group), keys, said=())
         for group in GROUPS
         if (keys := [one.key for one in group.indicators if one.key not in USUAL])
     )
 
 
-def _figures(found: Findings, name: str, title: str, keys: Sequence[str]) -> Table:
+def about(group: Group) -> str:
+    """What a group of the registry holds: its name and its question."""
+    return _("{group}. {question}", group=_(group.label), question=_(group.question))
+
+
+def _figures(
+    found: Findings,
+    name: str,
+    title: str,
+    keys: Sequence[str],
+    *,
+    said: Sequence[Reason] = (Reason.OPEN_GROUP_TOO_LARGE,),
+) -> Table:
     heads = [Column("indicator", _("Indicator"))]
     heads += columns("value", dated(found.period, found.loaded.status), 1)
     note = _(
@@ -54,18 +68,20 @@ def _figures(found: Findings, name: str, title: str, keys: Sequence[str]) -> Tab
     shown = {
         key: [found.estimates[key], *([changes[key]] if key in changes else [])] for key in keys
     }
-    note = " ".join([note, *why_missing(shown, found.settings)])
+    note = " ".join([note, *why_missing(shown, found.settings, said)])
     rows = tuple(_figure_row(found, key) for key in keys)
     return Table(name, title, tuple(heads), rows, note)
 
 
-def why_missing(shown: Mapping[str, Sequence[Estimate]], settings: Settings) -> list[str]:
-    """Each reason why a figure or its interval is missing, and what it is missing from. That a
-    table ends too early is said elsewhere on the page."""
+def why_missing(
+    shown: Mapping[str, Sequence[Estimate]], settings: Settings, said: Sequence[Reason]
+) -> list[str]:
+    """Each reason why a figure or its interval is missing, and what it is missing from; but for
+    those `said` elsewhere on the page."""
     missing: dict[int, list[str]] = {}
     for key, sides in shown.items():
         for code in {int(side.reason) for side in sides}:
-            if code not in (Reason.NONE, Reason.OPEN_GROUP_TOO_LARGE):
+            if code not in (Reason.NONE, *said):
                 missing.setdefault(code, []).append(_(find(key).label))
     if {len(labels) for labels in missing.values()} == {len(shown)}:
         return [reason(code, settings) for code in missing]
@@ -73,6 +89,12 @@ def why_missing(shown: Mapping[str, Sequence[Estimate]], settings: Settings) -> 
         _("{labels}: {why}", labels="; ".join(labels), why=reason(code, settings))
         for code, labels in sorted(missing.items())
     ]
+
+
+def whole_of(found: Findings) -> str:
+    """Name of the area that this one is part of; empty where there is none."""
+    parent = next((one.parent for one in found.holdings.areas if one.code == found.of.area), "")
+    return found.holdings.name(parent) if parent else ""
 
 
 def _figure_row(found: Findings, key: str) -> Row:
@@ -87,25 +109,56 @@ def _figure_row(found: Findings, key: str) -> Row:
         cells += triple(side, indicator.unit, found.settings)
     if before and key not in before.change:
         cells += [Gap(GapKind.UNDEFINED, _("Two of these do not compare with one another."))] * 3
+    whole = whole_of(found)
     return Row(
         tuple(cells),
-        second=what_it_counts(key, found.settings),
-        shown=_(indicator.label),
+        second=what_it_counts(key, found.settings, found.loaded.panel.grid, whole),
+        shown=called(key, found.loaded.panel.grid),
         decimals=indicator.unit.decimals,
     )
 
 
-def what_it_counts(key: str, settings: Settings) -> str:
-    """What the number counts, under its name."""
+def called(key: str, grid: AgeGrid) -> str:
+    """The name of a figure; that of a standard stands in its second line."""
+    one = find(key)
+    return names.brief(_(one.label)) if used(one, grid) else _(one.label)
+
+
+def what_it_counts(key: str, settings: Settings, grid: AgeGrid, whole: str = "") -> str:
+    """What the number counts, under its name, for people counted on this grid; `whole` is the area
+    that theirs is part of."""
+    one = find(key)
     first, last = settings.ageing_span
+    standard = used(one, grid)
+    if standard:
+        return _(
+            "{unit}; {standard}, {groups} age groups, the last {top}",
+            unit=_(one.unit.label),
+            standard=_(standard.standard),
+            groups=standard.groups,
+            top=standard.top,
+        )
+    if one.needs.whole and whole:
+        return _("{unit}; expected at the rates of {area}", unit=_(one.unit.label), area=whole)
+    even = _("0 if all died at one age")
     return {
         "e65": _("years still to live"),
         "median": _("age that half would reach"),
         "mode": _("years of age"),
+        "mode_parabola": _("years of age"),
+        "lower_quartile": _("age that three quarters would reach"),
+        "upper_quartile": _("age that one quarter would reach"),
+        "threshold_edagger": _("years of age"),
+        "threshold_H": _("years of age"),
         "edagger": _("e-dagger, years"),
         "H": _("H: years lost per death, for each year of life expectancy"),
         "ageing_rate": _("% per year of age, {first} to {last}", first=first, last=last),
-    }.get(key) or _(find(key).unit.label)
+        "mode_raw": _("age at which it begins"),
+        "gini": even,
+        "cv": even,
+        "theil": even,
+        "mld": even,
+    }.get(key) or _(one.unit.label)
 
 
 def dated(period: str, status: str) -> str:
@@ -191,6 +244,7 @@ def gains(found: Findings) -> Table:
         for label, gain, width in zip(grid.labels, days, grid.widths, strict=True)
     ]
     total = Row((_("all ages"), number(days.sum()), ""))
+    note = _("The last, open age group has no end, so that its days cannot be given by year.")
     heads = (
         Column("age", _("age")),
         Column("days", _("days"), _("for the group"), 2),
@@ -201,5 +255,6 @@ def gains(found: Findings) -> Table:
         _("Days of life expectancy gained if death rates were 1 % lower"),
         heads,
         tuple(rows),
+        note,
         total=total,
     )

@@ -46,13 +46,27 @@ def sex_and_year(code: str, period: str) -> str:
     return _("{sex} {year}", sex=sex(code), year=period)
 
 
-def inside(label: str) -> str:
-    """A label inside a sentence: its first letter small, unless it stands for itself.
+PEOPLE = ("Gini", "Theil")  # names of measures begin with them: the letter stays large
 
-    >>> inside("Life expectancy at 65"), inside("H, unevenness")
-    ('life expectancy at 65', 'H, unevenness')
+
+def inside(label: str) -> str:
+    """A label inside a sentence: its first letter small, unless it stands for itself or is a name.
+
+    >>> inside("Life expectancy at 65"), inside("H, unevenness"), inside("Gini coefficient")
+    ('life expectancy at 65', 'H, unevenness', 'Gini coefficient')
     """
-    return label[:1].lower() + label[1:] if label[1:2].islower() else label
+    if label.startswith(PEOPLE) or not label[1:2].islower():
+        return label
+    return label[:1].lower() + label[1:]
+
+
+def brief(label: str) -> str:
+    """A label without what it says in brackets, where a fuller one stands near.
+
+    >>> brief("Age-standardised death rate (Segi world standard population)")
+    'Age-standardised death rate'
+    """
+    return label.partition(" (")[0]
 
 
 def first_capital(text: str) -> str:
