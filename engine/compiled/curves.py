@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from engine.ages import Array
 from engine.banded import roughness
-from engine.compiled.jit import compiled
+from engine.compiled.jit import fused
 from engine.smoothing import ORDER, PENALTIES, SETTLED, STEPS, Basis, Curve
 
 Places = NDArray[np.intp]
@@ -31,7 +31,7 @@ def fit(basis: Basis, ages: Array, deaths: Array, exposure: Array) -> Curve:
     return Curve(basis, coefficients.reshape(*batch, -1), penalty.reshape(batch))
 
 
-@compiled
+@fused
 def _fit(
     deaths: Array,
     exposure: Array,
@@ -84,7 +84,7 @@ def _fit(
                 coefficients[row], penalty[row] = now, PENALTIES[k]
 
 
-@compiled
+@fused
 def _begin(
     deaths: Array,
     exposure: Array,
@@ -108,7 +108,7 @@ def _begin(
     _solve(bands, begin)
 
 
-@compiled
+@fused
 def _add(
     place: int, local: Array, x: int, weight: float, value: float, bands: Array, right: Array
 ) -> None:
@@ -120,7 +120,7 @@ def _add(
             bands[j - i, place + i] += by * local[x, j]
 
 
-@compiled
+@fused
 def _normal(
     deaths: Array,
     exposure: Array,
@@ -140,7 +140,7 @@ def _normal(
             bands[d, k] = penalty * rough[d, k]
     right[:] = 0.0
     for x in range(first.size):
-        log_rate, place = 0.0, first[x]
+        log_rate, place = 0.0, max(first[x], 0)  # said so, no index is checked for being negative
         for i in range(4):
             log_rate += local[x, i] * now[place + i]
         fitted[x] = exposure[row, x] * np.exp(log_rate)
@@ -152,7 +152,7 @@ def _normal(
                 bands[j - i, place + i] += by * local[x, j]
 
 
-@compiled
+@fused
 def _factor(bands: Array) -> None:
     """U'AU: the bands become the diagonal and, over it, the rows of the upper factor."""
     size = bands.shape[1]
@@ -166,7 +166,7 @@ def _factor(bands: Array) -> None:
             bands[d, k] /= bands[0, k]
 
 
-@compiled
+@fused
 def _solve(bands: Array, right: Array) -> None:
     """The solution takes the place of the right side, the factor that of the system."""
     _factor(bands)
@@ -181,7 +181,7 @@ def _solve(bands: Array, right: Array) -> None:
             right[k] -= bands[d, k] * right[k + d]
 
 
-@compiled
+@fused
 def _criterion(
     deaths: Array,
     exposure: Array,

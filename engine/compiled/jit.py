@@ -34,3 +34,9 @@ def summing(function: Function) -> Function:
     """Sums in the order that is fastest; nothing else is loosened, and nan stays nan."""
     kept: Any = numba.njit(cache=True, error_model="numpy", fastmath={"reassoc", "nsz"})
     return cast(Function, kept(function))
+
+
+def fused(function: Function) -> Function:
+    """A product and the sum it goes into are rounded once, together."""
+    kept: Any = numba.njit(cache=True, error_model="numpy", fastmath={"contract"})
+    return cast(Function, kept(function))

@@ -5,7 +5,7 @@ along the straight line between two columns of rates, as in engine.decomposition
 import numpy as np
 
 from engine.ages import Array
-from engine.compiled.jit import compiled
+from engine.compiled.jit import fused
 from engine.compiled.rules import Rules, by_infant_rate
 from engine.decomposition.straight import BESIDE_JUMP, DOUBLINGS, NODES, WEIGHTS
 from engine.panel import Panel
@@ -26,7 +26,7 @@ def explain(rules: Rules, lower: Panel, upper: Panel, by_age: Array, difference:
     by_age[~np.isfinite(difference)] = np.nan
 
 
-@compiled
+@fused
 def _contributions(
     rules: Rules,
     start: Array,
@@ -72,7 +72,7 @@ def _contributions(
         difference[p] = last - _expectancy(rules, mx, mix, room)
 
 
-@compiled
+@fused
 def _at(
     start: Array,
     end: Array,
@@ -91,7 +91,7 @@ def _at(
         mix[1, 0, 0, sex] = ratio[0, p, sex] + t * (ratio[1, p, sex] - ratio[0, p, sex])
 
 
-@compiled
+@fused
 def _cuts(
     rules: Rules,
     start: Array,
@@ -119,7 +119,7 @@ def _cuts(
     return size
 
 
-@compiled
+@fused
 def _passes(
     level: float,
     start: Array,
@@ -140,7 +140,7 @@ def _passes(
     return _cut(c / half, np.sign(b + 2 * a * (c / half)), cuts, toward, size)
 
 
-@compiled
+@fused
 def _cut(t: float, sign: float, cuts: Array, toward: Array, size: int) -> int:
     """One more cut, put in its place; of equal ones the later comes last."""
     if not 0 < t < 1:
@@ -153,7 +153,7 @@ def _cut(t: float, sign: float, cuts: Array, toward: Array, size: int) -> int:
     return size + 1
 
 
-@compiled
+@fused
 def _table(rules: Rules, mx: Array, mix: Array, room: Array) -> tuple[float, float, float]:
     """Into room [ax, its slope, qx, ex, ...]; the slope of a(1-4) in m0, the years left at the top,
     and e0."""
@@ -186,12 +186,12 @@ def _table(rules: Rules, mx: Array, mix: Array, room: Array) -> tuple[float, flo
     return child, left, ex[0]
 
 
-@compiled
+@fused
 def _expectancy(rules: Rules, mx: Array, mix: Array, room: Array) -> float:
     return _table(rules, mx, mix, room)[2]
 
 
-@compiled
+@fused
 def _add_slopes(
     rules: Rules, mx: Array, mix: Array, share: float, room: Array, mean: Array
 ) -> None:

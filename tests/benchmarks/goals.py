@@ -1,0 +1,220 @@
+"""What is measured, against what, and the goal."""
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+
+from engine import bulk
+from engine.ages import AgeGrid
+from engine.compiled import tables as kernel
+from engine.compiled.rules import rules
+from engine.panel import Panel
+from engine.settings import SETTINGS
+from engine.smoothing import Basis
+from engine.streams import generator
+from tests.benchmarks import naive
+from tests.benchmarks.sides import Measured, Side, measure
+from tests.factories import codes, gompertz_panel
+
+PLAIN = SETTINGS["almanac-1"]
+SINGLE = AgeGrid(tuple(range(111)))
+ABRIDGED = AgeGrid((0, 1, *range(5, 86, 5)))
+
+
+@dataclass(frozen=True, slots=True)
+class Result:
+    """`ratio` is the time of `what` over that of `over`, or, with a goal of at least so much, the
+    other way round."""
+
+    what: str
+    over: str
+    ratio: float
+    must: str
+    stretch: str
+    spread: float
+    void: bool
+
+
+def populations(grid: AgeGrid, count: int, *, people: float = 2e6, seed: int = 1) -> Panel:
+    """Of 500 different populations, over and over."""
+    slopes = np.linspace(0.085, 0.11, min(count, 500))
+    level = 0.1 / np.exp(86 * slopes)
+    panel = gompertz_panel(grid, seed=seed, slope=slopes, level=level, people=people)
+    many = -(-count // len(slopes))
+    return panel.over(lambda array: np.tile(array, (many, 1))[:count])
+
+
+def tables_111() -> list[Result]:
+    return _tables(SINGLE, 100_000, 4_000, ("<= 4", "<= 2.5"), ("<= 10", "<= 8"))
+
+
+def tables_19() -> list[Result]:
+    return _tables(ABRIDGED, 200_000, 20_000, ("<= 7", "<= 4"), None)
+
+
+def _tables(
+    grid: AgeGrid,
+    rows: int,
+    fewer: int,
+    fast: tuple[str, str],
+    plain: tuple[str, str] | None,
+) -> list[Result]:
+    ages, panel = len(grid), populations(grid, rows)
+    sides, found = {"limit": _limit(panel), "compiled": _compiled(panel)}, []
+    over = f"one read and six writes, {ages} ages"
+    what = "tables and eight numbers, compiled"
+    found.append(_less(measure(sides), "compiled", "limit", what, over, fast))
+    part = panel[:fewer]
+    sides = {"limit": sides["limit"]}
+    columns = {name: np.zeros((fewer, ages)) for name in bulk.COLUMNS}
+    numbers = {key: np.zeros(fewer) for key in bulk.NUMBERS}
+    sides["numpy"] = Side(lambda: bulk.fill(part, PLAIN, columns, numbers), fewer)
+    what = "the same, numpy in blocks"
+    found.append(_less(measure(sides), "numpy", "limit", what, over, plain or ("", "")))
+    return found
+
+
+def _limit(panel: Panel) -> Side:
+    mx = panel.deaths / panel.exposure
+    room = [np.zeros_like(mx) for _ in range(6)]
+    return Side(lambda: naive.one_read_six_writes(mx, *room), len(mx))
+
+
+def _compiled(panel: Panel) -> Side:
+    """Into columns that are there already, like the limit's."""
+    rows, ages = panel.deaths.shape
+    each = (kernel.TILE // ages // kernel.FOUR + 1) * kernel.FOUR
+    whole = rows // each * each
+    given = (panel.deaths, panel.exposure, panel.infant_weight, panel.infant_ratio)
+    found = kernel.Columns(*(np.zeros((rows, ages)) for _ in kernel.Columns._fields))
+    numbers, chain = np.zeros((rows, len(kernel.NUMBERS))), rules(panel.grid, PLAIN)
+    return Side(
+        lambda: kernel._by_tiles(chain, each, given, found, numbers, slice(0, whole)), whole
+    )
+
+
+def loops() -> list[Result]:
+    panel = populations(SINGLE, 20_000)
+    few = gompertz_panel(SINGLE, slope=np.linspace(0.085, 0.11, 20))
+    mx = few.deaths / few.exposure
+    rows, table = mx.tolist(), naive.frame(SINGLE, mx)
+    ages, widths = [float(start) for start in SINGLE.starts], SINGLE.widths.tolist()
+    measured = measure(
+        {
+            "groups": Side(lambda: naive.tables_by_groups(table), len(rows)),
+            "lists": Side(
+                lambda: [naive.table_in_lists(ages, widths, row) for row in rows], len(rows)
+            ),
+            "compiled": _compiled(panel),
+        }
+    )
+    what, groups = "tables and eight numbers, compiled", "groupby.apply loop, 111 ages"
+    return [
+        _more(measured, "compiled", "groups", what, groups, (">= 1000", "")),
+        _more(measured, "compiled", "lists", what, "bare lists, 111 ages", (">= 80", "")),
+    ]
+
+
+def simulation() -> list[Result]:
+    panel, draws = populations(SINGLE, 12, people=200_000), 1000
+    names = codes(panel)
+    rng = generator("benchmark", "raw")
+
+    def raw() -> None:
+        for deaths in panel.deaths:
+            rng.poisson(deaths, (draws, len(deaths)))
+
+    measured = measure(
+        {
+            "raw": Side(raw),
+            "compiled": Side(
+                lambda: bulk.simulated(panel, PLAIN, names, draws=draws, purpose="benchmark")
+            ),
+        }
+    )
+    what = "simulated deaths to e0, compiled"
+    goal = ("<= 0.35", "<= 0.2")
+    return [_less(measured, "compiled", "raw", what, "numpy's Poisson numbers alone", goal)]
+
+
+def differences() -> list[Result]:
+    slopes = np.linspace(0.085, 0.1, 2_000)  # lines without a kink
+    this = gompertz_panel(SINGLE, slope=slopes, level=0.1 / np.exp(86 * slopes))
+    that = this[::-1]
+    fewer = this[:200], that[:200]  # the numpy engine takes longer
+    n = SINGLE.widths[:-1]
+    start, end = ((one.deaths / one.exposure)[0] for one in (that, this))
+    measured = measure(
+        {
+            "naive": Side(lambda: naive.by_perturbation(n, start, end)),
+            "numpy": Side(lambda: bulk.contributions(*fewer, PLAIN, by="numpy"), 200),
+            "compiled": Side(lambda: bulk.contributions(this, that, PLAIN, by="compiled"), 2_000),
+        }
+    )
+    what = "a difference explained, compiled"
+    over = "perturbing each rate at 20 points, 111 ages"
+    return [
+        _more(measured, "compiled", "naive", what, over, (">= 12000", "")),
+        _more(measured, "numpy", "naive", "the same, numpy", over, (">= 2000", "")),
+    ]
+
+
+def curves() -> list[Result]:
+    panel, inside = populations(SINGLE, 100, people=200_000), slice(10, 100)
+    ages = SINGLE.mids[inside]
+    deaths, exposure = (part[:, inside].copy() for part in (panel.deaths, panel.exposure))
+    basis = Basis(10, 100, 18)
+    measured = measure(
+        {
+            "dense": Side(lambda: naive.cold_dense(basis, ages, deaths[0], exposure[0])),
+            "numpy": Side(
+                lambda: bulk.curves(basis, ages, deaths, exposure, by="numpy"), len(deaths)
+            ),
+            "compiled": Side(
+                lambda: bulk.curves(basis, ages, deaths, exposure, by="compiled"), len(deaths)
+            ),
+        }
+    )
+    over = "the same search with full matrices"
+    what = "P-spline with search, compiled"
+    return [
+        _more(measured, "compiled", "dense", what, over, (">= 20", "")),
+        _more(measured, "numpy", "dense", "the same, numpy", over, ("", "")),
+    ]
+
+
+def _less(
+    measured: Measured, ours: str, theirs: str, what: str, over: str, goal: tuple[str, str]
+) -> Result:
+    return _result(measured, ours, theirs, what, over, goal, (ours, theirs))
+
+
+def _more(
+    measured: Measured, ours: str, theirs: str, what: str, over: str, goal: tuple[str, str]
+) -> Result:
+    return _result(measured, ours, theirs, what, over, goal, (theirs, ours))
+
+
+def _result(
+    measured: Measured,
+    ours: str,
+    theirs: str,
+    what: str,
+    over: str,
+    goal: tuple[str, str],
+    sides: tuple[str, str],
+) -> Result:
+    ratio = measured.seconds[sides[0]] / measured.seconds[sides[1]]
+    spread = max(measured.spread[ours], measured.spread[theirs])
+    return Result(what, over, float(f"{ratio:.4g}"), *goal, round(spread, 3), spread > 1.3)
+
+
+GOALS: tuple[Callable[[], list[Result]], ...] = (
+    tables_111,
+    tables_19,
+    loops,
+    simulation,
+    differences,
+    curves,
+)
