@@ -113,7 +113,7 @@ def _contribution(indicator: Indicator, sides: Sides, settings: Settings) -> Con
 
 
 def _path(indicator: Indicator, between: Panel | None, settings: Settings) -> Array | None:
-    if between is None or not indicator.smooth:
+    if between is None or not (indicator.smooth and decomposable(indicator)):
         return None
     by_age = decomposition.along(indicator, between, settings).by_age
     return by_age if np.isfinite(by_age).all() else None
