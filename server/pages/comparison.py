@@ -4,6 +4,7 @@ from dataclasses import dataclass
 from typing import ClassVar
 
 from engine import decomposition, indicators
+from engine.standardisation import few_deaths, used
 from server.charts.chart import Chart
 from server.exports.table import Table
 from server.pages import comparison_charts as charts
@@ -141,6 +142,7 @@ def _lead(found: Comparison) -> tuple[Sentence, ...]:
     if found.same:
         return ()
     said.append(_seen(found))
+    said.append(basis.standard(used(indicators.find(found.question.of), found.grid)))
     if part is not None and asked.clear:
         most = charts.most(found, part)
         named = found.question.of != "e0"
@@ -205,6 +207,11 @@ def _cautions(found: Comparison) -> tuple[Caution, ...]:
             basis.provisional(sorted(provisional)),
             basis.few_person_years(
                 fewest, found.settings, tables.named(found, lived[fewest]).whole
+            ),
+            *(
+                basis.few_deaths(float(side.panel.deaths.sum()), tables.named(found, side.of).whole)
+                for side in sides
+                if few_deaths(indicators.INDICATORS["asr_esp2013"], side.panel.deaths)
             ),
             basis.law(found.settings, found.grid.open_age) if modelled else None,
         ],

@@ -15,6 +15,7 @@ from server.results.comparison import Comparison, Side
 from server.results.explaining import DECOMPOSED, Contribution
 from server.sentences import comparison as say
 from server.sentences import contributions as ages_say
+from server.sentences import names
 from server.sentences.numbers import number
 from server.sentences.text import _
 
@@ -160,6 +161,7 @@ def asked_for(found: Comparison, source: str) -> Chart | None:
     if key in DECOMPOSED or part is None or found.same:
         return None
     of, both = printed(key), pair(found)
+    label = names.inside(_(find(key).label))
     span, carried = most(found, part)
     return _bars(
         found,
@@ -168,12 +170,11 @@ def asked_for(found: Comparison, source: str) -> Chart | None:
         of=of,
         finding=ages_say.of_asked(asked(found, key), span, carried),
         unit=_(
-            "What each age group adds to {label}, {this} against {that}, {unit}, with {level} %"
-            " intervals; hatched: against the rest",
-            label=of.label,
+            "What each age group adds to {what}, {this} against {that}, with {level} % intervals;"
+            " hatched: against the rest",
+            what=_("{label}, {unit}", label=label, unit=of.unit) if of.unit else label,
             this=both.this.whole,
             that=both.that.whole,
-            unit=of.unit,
             level=round(100 * found.settings.level),
         ),
         source=source,
@@ -236,7 +237,7 @@ def _bars(
         ),
         x_kind="age",
         x_range=axis(found),
-        y_title=of.unit,
+        y_title=of.unit or of.label,
         y_range=(bottom - room if bottom < 0 else 0.0, ceiling + room),
         y_ticks=shown,
         y_text=tuple(

@@ -35,9 +35,9 @@ def printed(key: str) -> Printed:
     if key == "H":
         return Printed(key, _("unevenness"), _("thousandths of H"), 1_000, 1)
     one = find(key)
-    return Printed(
-        key, names.inside(_(one.label)), _(one.unit.label), one.unit.scale, one.unit.decimals + 1
-    )
+    label, unit = names.brief(names.inside(_(one.label))), one.unit
+    words = "" if unit.label == "ratio" else _(unit.label)
+    return Printed(key, label, words, unit.scale, unit.decimals + 1)
 
 
 def shown(found: Comparison) -> tuple[Printed, ...]:
@@ -95,8 +95,11 @@ def _missing(found: Comparison, one: Printed) -> Cell:
 def _remainder_words(found: Comparison) -> str:
     """What the row of its own for what no age accounts for is called; empty where it is not owed:
     rounding is all there is."""
-    parts = found.explained.contributions.values()
-    told = (say.remainder(part.remainder, part.difference) for part in parts)
+    parts = found.explained.contributions
+    told = [
+        say.remainder(find(key), part.remainder, part.difference)
+        for key, part in reversed(parts.items())
+    ]
     return next((words for words in told if words), "")
 
 

@@ -7,6 +7,7 @@ import numpy as np
 
 from engine.indicators import INDICATORS
 from engine.settings import span
+from engine.standardisation import few_deaths
 from server.charts.chart import Chart
 from server.exports.table import Table
 from server.pages import frames
@@ -14,18 +15,19 @@ from server.pages import population_year_living as living
 from server.pages import population_year_models as models
 from server.pages import population_year_rates as rates
 from server.pages import population_year_tables as tables
-from server.pages.choices import Offer, offer
+from server.pages.choices import Choice, choice
 from server.pages.page import Caution, Frame, Page
-from server.results.models import ADULT
 from server.results.population_year import Findings, population_year
 from server.results.questions import (
     ComparisonQuestion,
+    CurvesQuestion,
     PopulationYear,
     PopulationYearQuestion,
     TrendQuestion,
     address,
 )
 from server.sentences import basis, names
+from server.sentences import curves as curves_say
 from server.sentences import models as models_say
 from server.sentences import population_year as say
 from server.sentences.pieces import Piece, Sentence
@@ -38,17 +40,6 @@ from server.store.heading import Heading
 LAW = "almanac-1-kannisto"  # what to ask for where the open group is too large
 
 
-@dataclass(frozen=True, slots=True)
-class Choice:
-    """A plain form that leads to another area, sex and year under the same settings."""
-
-    action: str
-    of: PopulationYear
-    offer: Offer
-    figures: str
-    settings: str
-
-
 @dataclass(frozen=True, slots=True, kw_only=True)
 class PopulationYearPage(Page):
     """A life table, its few main numbers and its pictures."""
@@ -58,8 +49,6 @@ class PopulationYearPage(Page):
     groups: tuple[tuple[str, str], ...]  # further tables of figures, and what each is about
     avoid: Sentence  # where the fewest deaths make a month; empty where it is not known
     implied: Sentence  # whether deaths and people at the highest ages fit together
-    fitted: bool  # whether there is a table of laws
-    laws: Sentence  # which one describes the rates best
     about_table: Sentence
     rows: str  # summary of the folded life table
     computed: tuple[Sentence, ...]
@@ -91,14 +80,12 @@ def build(
         groups=tuple((table.key, table.title) for table in tables.further(found)),
         avoid=_avoid(found),
         implied=_implied(found),
-        laws=_laws(found),
-        fitted=any(one.found for one in found.laws),
         about_table=say.about_table(found.chain.table.grid.open_age, modelled=found.chain.modelled),
         rows=_rows(found),
         computed=basis.computed(found.settings),
         basis=(*frames.basis(heading.edition.basis), *_births(found)),
         further=_further(found),
-        choice=_choice(found),
+        choice=choice(heading, found.holdings, question),
     )
 
 
@@ -113,7 +100,7 @@ def _tables(found: Findings) -> tuple[Table, ...]:
     if found.gainful:
         made += [tables.gains(found), models.avoidable(found)]
     implied = models.implied(found)
-    made += [models.laws(found), *([implied] if implied else [])]
+    made += [implied] if implied else []
     return tuple(table for table in made if table.rows)
 
 
@@ -132,14 +119,6 @@ def _implied(found: Findings) -> Sentence:
         return ()
     population = of.population
     return models_say.implied(population.ratio, population.age, tables.whole_of(found))
-
-
-def _laws(found: Findings) -> Sentence:
-    adult = [one for one in found.laws if one.found and one.first >= ADULT]
-    if not adult:
-        return models_say.none_fits()
-    best = min(adult, key=lambda one: float(one.fit.aic))
-    return models_say.best(_(best.law.label), best.first)
 
 
 def _frame(found: Findings) -> Frame:
@@ -203,6 +182,9 @@ def _cautions(found: Findings) -> tuple[Caution, ...]:
         beside=[
             basis.provisional(provisional),
             basis.few_person_years(float(panel.exposure.sum()), found.settings),
+            basis.few_deaths(float(panel.deaths.sum()), names.population(found.of.sex, found.name))
+            if few_deaths(INDICATORS["asr_esp2013"], panel.deaths)
+            else None,
             basis.law(found.settings, panel.grid.open_age) if found.chain.modelled else None,
             basis.borrowed(panel.grid.open_age, whole) if found.chain.borrowed else None,
             basis.early_end(panel.grid.open_age) if found.chain.open_low else None,
@@ -272,15 +254,8 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
         _("Life expectancy from {first} to {last}", first=trend.first, last=trend.last),
         address(heading.collection.code, heading.edition.number, trend),
     )
-    return basis.further(tuple(links), course)
-
-
-def _choice(found: Findings) -> Choice:
-    held, heading = found.holdings, found.heading
-    return Choice(
-        action=f"/c/{heading.collection.code}/{heading.edition.number}/{found.question.view}",
-        of=found.of,
-        offer=offer(held),
-        figures=found.question.figures,
-        settings=found.question.settings,
+    curves = CurvesQuestion(of, asked.figures, asked.settings)
+    behind = Piece(
+        curves_say.question(), address(heading.collection.code, heading.edition.number, curves)
     )
+    return (*basis.further(tuple(links), course), (behind,))

@@ -63,10 +63,12 @@ def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendP
     area, sex = found.lines[0]
     chart = trend_chart.draw(found, say.finding(label, told), frames.source(heading))
     lead = [say.meaning(question.of)]
-    if courses[0] and not found.indicator.needs.whole:  # of those no two compare
-        change = courses[0].change
-        lead.append(kinds.could_be_seen(found.indicator, change, found.settings))
-        lead += [say.halves(courses[0]), say.others(told[1 : 1 + SAID])]
+    if not found.indicator.needs.whole:  # of those no two compare
+        if courses[0]:
+            change = courses[0].change
+            lead.append(kinds.could_be_seen(found.indicator, change, found.settings))
+            lead.append(say.halves(courses[0]))
+        lead.append(say.others([one for one in courses[1 : 1 + SAID] if one]))
     return TrendPage(
         frame=frames.pinned(
             heading,

@@ -30,7 +30,7 @@ def draw(found: Series, finding: str, source: str) -> Chart | None:
     room = 0.06 * ((high - low) or abs(high) or 1.0)
     bottom, shown = _scale(low, high + room)
     decimals = found.indicator.unit.decimals
-    unit = _(found.indicator.unit.label)
+    unit = _measured(found)
     return Chart(
         key="trend-lines",
         finding=finding,
@@ -68,11 +68,19 @@ def _scale(low: float, high: float) -> tuple[float, tuple[float, ...]]:
     return bottom, ticks(bottom, high)
 
 
+def _measured(found: Series) -> str:
+    """What stands over the scale: the unit; of a ratio, which has none, what it is of."""
+    one = found.indicator
+    return names.brief(_(one.label)) if one.unit.label == "ratio" else _(one.unit.label)
+
+
 def _unit(found: Series) -> str:
+    label, unit = _(found.indicator.label), found.indicator.unit
     text = _(
-        "{label}, {unit}, {first} to {last}; bands are {level} % intervals",
-        label=_(found.indicator.label),
-        unit=_(found.indicator.unit.label),
+        "{what}, {first} to {last}; bands are {level} % intervals",
+        what=label
+        if unit.label == "ratio"
+        else _("{label}, {unit}", label=label, unit=_(unit.label)),
         first=found.periods[0],
         last=found.periods[-1],
         level=round(100 * found.settings.level),

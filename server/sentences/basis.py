@@ -7,6 +7,7 @@ from collections.abc import Sequence
 
 from engine.indicators import Indicator
 from engine.settings import Settings
+from engine.standardisation import FEW_DEATHS, Used
 from server.sentences.names import listed
 from server.sentences.numbers import whole
 from server.sentences.pieces import Piece, Sentence, phrase
@@ -51,6 +52,32 @@ def provisional(periods: Sequence[str]) -> Told:
         " figures.",
         len(periods),
         years=listed(sorted(periods)),
+    )
+
+
+def standard(of: Used | None) -> Sentence:
+    """Whose ages weigh a standardised rate, and on what groups."""
+    if of is None:
+        return ()
+    return phrase(
+        _(
+            "Weighted by the ages of the {standard}, in {groups} age groups, the last {top}, so"
+            " that older and younger populations compare."
+        ),
+        standard=_(of.standard),
+        groups=str(of.groups),
+        top=of.top,
+    )
+
+
+def few_deaths(deaths: float, who: str) -> Told:
+    """A flag on standardised rates that rest on few deaths."""
+    return _("Few deaths"), _(
+        "The standardised death rates of {who} rest on {deaths} deaths; below {bound} chance moves"
+        " them a good deal.",
+        who=who,
+        deaths=whole(deaths),
+        bound=FEW_DEATHS,
     )
 
 
@@ -152,12 +179,17 @@ def reading(settings: Settings) -> tuple[Told, ...]:
                 " anyone will live."
             ),
         ),
-        (
-            _("Chance"),
-            _(
-                "The intervals cover chance in the number of deaths only, not errors in counting"
-                " deaths or people."
-            ),
+        chance(),
+    )
+
+
+def chance() -> Told:
+    """What intervals leave out."""
+    return (
+        _("Chance"),
+        _(
+            "The intervals cover chance in the number of deaths only, not errors in counting"
+            " deaths or people."
         ),
     )
 

@@ -96,11 +96,12 @@ class Answer:
 
 def answer(pair: Pair, of: Answer, why_not: str) -> Sentence:
     """The page's first line. `why_not` says why there is no difference where there is none."""
-    label = names.inside(_(of.indicator.label))
+    label = names.brief(_(of.indicator.label))
+    inside = names.inside(label)
     if of.kind is Movement.UNKNOWN:
         return phrase(
             _("The difference in {label} between {this} and {that} cannot be given. {why}"),
-            label=label,
+            label=inside,
             this=pair.this.whole,
             that=pair.that.whole,
             why=why_not,
@@ -114,7 +115,7 @@ def answer(pair: Pair, of: Answer, why_not: str) -> Sentence:
             this=pair.this.whole,
         )
     if of.kind in (Movement.NOT_CLEAR, Movement.TOO_SMALL):
-        return _no_clear_difference(pair, of, label)
+        return _no_clear_difference(pair, of, inside)
     parts: dict[str, Piece | str] = {
         "amount": _amount(of),
         "interval": _size(of),
@@ -125,18 +126,16 @@ def answer(pair: Pair, of: Answer, why_not: str) -> Sentence:
         return _life_expectancy(pair, of, parts)
     text = (
         _(
-            "{label} was {amount} higher for {this} than for {that} {interval}: {here} against"
+            "{label} stood {amount} higher for {this} than for {that} {interval}: {here} against"
             " {there}."
         )
         if of.difference.value > 0
         else _(
-            "{label} was {amount} lower for {this} than for {that} {interval}: {here} against"
+            "{label} stood {amount} lower for {this} than for {that} {interval}: {here} against"
             " {there}."
         )
     )
-    return phrase(
-        text, label=_(of.indicator.label), this=pair.this.whole, that=pair.that.whole, **parts
-    )
+    return phrase(text, label=label, this=pair.this.whole, that=pair.that.whole, **parts)
 
 
 def _no_clear_difference(pair: Pair, of: Answer, label: str) -> Sentence:

@@ -10,6 +10,8 @@ from server.sentences.numbers import number, whole
 from server.sentences.pieces import Sentence, phrase
 from server.sentences.text import _
 
+BY_PEOPLE = ("cdr", "yll75", "yll_ref")  # weighted by the people there are, who differ as well
+
 
 def carried(ages: str, part: float, difference: float, *, named: bool) -> Sentence:
     """Which ages hold most of a difference in life expectancy; nothing where others work so much
@@ -53,7 +55,7 @@ def by_age(of: Answer, ages: str, part: float) -> str:
 
 def of_asked(of: Answer, ages: str, part: float) -> str:
     """The same for any other indicator."""
-    label = names.inside(_(of.indicator.label))
+    label = names.brief(names.inside(_(of.indicator.label)))
     if not of.clear or abs(part) > abs(float(of.difference.value)):
         return _("What each age adds to the difference in {label}", label=label)
     unit = of.indicator.unit
@@ -122,11 +124,13 @@ def not_shared_out(one: Indicator, why: str) -> Sentence:
     )
 
 
-def remainder(value: float, difference: float) -> str:
+def remainder(one: Indicator, value: float, difference: float) -> str:
     """Why a row of its own stands beside the ages; empty where rounding is all there is."""
     if not math.isfinite(value) or abs(value) <= 1e-9 * max(abs(difference), 1e-9):
         return ""
-    return _("no rate: ages of the people, rule of the first year, or a law's weights")
+    if one.key in BY_PEOPLE:
+        return _("no death rate: older or younger people")
+    return _("no death rate: rule of the first year, or a law’s weights")
 
 
 def arithmetic() -> tuple[str, str]:

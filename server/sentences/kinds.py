@@ -19,7 +19,7 @@ NO_POOL = 30  # years beyond which adding up is no advice
 def parts(kinds: ShiftSqueeze) -> tuple[tuple[str, str, Estimate], ...]:
     """Each part of the difference: its key, what it is in words, its size in years."""
     return (
-        ("shift", _("deaths of old age at other ages (shift)"), kinds.shift),
+        ("shift", _("deaths of old age coming later or earlier (shift)"), kinds.shift),
         (
             "squeeze",
             _("deaths of old age closer together or farther apart (squeeze)"),
@@ -39,7 +39,10 @@ def told(kinds: ShiftSqueeze) -> Sentence:
     key, words, part = max(known, key=lambda one: abs(float(one[2].value)))
     clear = key != "unexplained" and movement(part, YEARS) in (Movement.MORE, Movement.LESS)
     text = (
-        _("By laws fitted to both sides most of the difference in life expectancy is {most}.")
+        _(
+            "By laws fitted to both sides the largest part of the difference in life expectancy"
+            " comes from {most}."
+        )
         if clear
         else _(
             "By laws fitted to both sides no kind of change stands out in the difference in life"
@@ -88,12 +91,12 @@ def could_be_seen(indicator: Indicator, change: Estimate, settings: Settings) ->
     if not math.isfinite(se) or movement(change, unit) is not Movement.NOT_CLEAR:
         return ()
     size = _size(unit.scale * float(smallest_change(change.se, settings.level)), unit)
-    first = _("A change of {size} would have been seen four times out of five.", size=size)
+    first = _("A difference of {size} would have been seen four times out of five.", size=size)
     needed = float(pooled_years(change.value, change.se, settings.level)) * settings.years
     if not needed <= NO_POOL:
         return phrase(
             _(
-                "{first} A change as small as the one found would not be seen even with {most}"
+                "{first} One as small as the one found would not be seen even with {most}"
                 " years added up on each side."
             ),
             first=first,

@@ -72,7 +72,7 @@ def answer(course: Course | None, label: str, who: str) -> Sentence:
             label=label,
             who=who,
         )
-    unit = course.indicator.unit
+    unit, label = course.indicator.unit, names.brief(label)
     if course.indicator.needs.whole:
         return _beside_the_whole(course)
     parts: dict[str, Piece | str] = {
@@ -126,7 +126,7 @@ def _beside_the_whole(course: Course) -> Sentence:
     unit, last = course.indicator.unit, course.at_last
     return phrase(
         _("{label} among {who} in {year}: {value} {interval}."),
-        label=_(course.indicator.label),
+        label=names.brief(_(course.indicator.label)),
         who=course.who,
         year=course.last,
         value=shown(last, unit),
@@ -195,6 +195,7 @@ def finding(label: str, courses: list[Course]) -> str:
     """The chart's title: where the lines end, as far as words can hold it."""
     if not courses:
         return label
+    label = names.brief(label)
     if len(courses) > 2:
         return _range(label, courses)
     first, *others = courses
@@ -235,6 +236,10 @@ def meaning(key: str) -> Sentence:
             "The lower it is, the more alike are lengths of life: at 0 all would reach the same"
             " age, at 1 the risk of dying would be the same at every age."
         ),
+        "smr": _(
+            "At 1 there were as many deaths as the death rates of the larger area would bring."
+        ),
+        "gini": _("The lower it is, the more alike are lengths of life: at 0 all would be alike."),
         "ageing_rate": _(
             "It sets people of different ages beside each other in one year, and does not say how"
             " fast anyone ages."

@@ -139,7 +139,7 @@ def test_the_same_on_both_sides_is_no_comparison(isle: Session) -> None:
 
 def test_the_indicator_asked_for_is_the_headline(isle: Session) -> None:
     built = page(isle, "north.m.2014", "north.f.2014", of="e80")
-    assert words(built).startswith("Life expectancy at 80 was")
+    assert words(built).startswith("Life expectancy at 80 stood")
     last = built.table("figures").rows[-1]
     assert (last.cells[0], last.shown) == ("e80", "Life expectancy at 80")
 

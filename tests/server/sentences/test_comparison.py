@@ -65,7 +65,7 @@ def test_another_indicator_is_named() -> None:
     pair = say.Pair(MEN_LATE, WOMEN)
     said = words(say.answer(pair, asked(estimate(0.04, 0.03, 0.05), "H", 0.16, 0.12), ""))
     assert said == (
-        "Relative unevenness of length of life was 0.040 higher for men of Northlade in 2012 than"
+        "Relative unevenness of length of life stood 0.040 higher for men of Northlade in 2012 than"
         " for women of Tollbay in 2012 (0.030 to 0.050): 0.160 against 0.120."
     )
 

@@ -2,6 +2,7 @@
 
 import pytest
 
+from engine.indicators import INDICATORS
 from server.sentences import contributions as say
 from tests.server.sentences.test_comparison import asked, words
 from tests.server.sentences.test_movements import estimate
@@ -55,6 +56,8 @@ def test_no_ages_hold_more_than_the_whole() -> None:
 
 
 def test_a_remainder_gets_its_row_only_beyond_rounding() -> None:
-    assert say.remainder(1e-12, 0.5) == ""
-    assert say.remainder(1e-6, 0.5) != ""
-    assert say.remainder(0.0, 0.0) == ""
+    life, crude = INDICATORS["e0"], INDICATORS["cdr"]
+    assert say.remainder(life, 1e-12, 0.5) == ""
+    assert "rule of the first year" in say.remainder(life, 1e-6, 0.5)
+    assert "older or younger people" in say.remainder(crude, 1e-6, 0.5)
+    assert say.remainder(crude, 0.0, 0.0) == ""

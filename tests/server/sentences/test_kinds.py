@@ -39,7 +39,7 @@ def parted(**parts: Estimate) -> ShiftSqueeze:
 @pytest.mark.parametrize(
     ("key", "said"),
     [
-        ("shift", "deaths of old age at other ages (shift): +1.9 years"),
+        ("shift", "deaths of old age coming later or earlier (shift): +1.9 years"),
         ("squeeze", "(squeeze): +1.9 years"),
         ("background", "at all ages alike: +1.9 years"),
         ("infant", "in the first year: +1.9 years"),
@@ -47,7 +47,7 @@ def parted(**parts: Estimate) -> ShiftSqueeze:
 )
 def test_the_largest_part_is_named_where_chance_leaves_it_clear(key: str, said: str) -> None:
     clear = words(say.told(parted(**{key: estimate(1.9, 1.2, 2.6)})))
-    assert "most of the difference in life expectancy is" in clear
+    assert "largest part of the difference in life expectancy comes from" in clear
     assert said in clear
     unclear = words(say.told(parted(**{key: estimate(1.9, -0.2, 4.0)})))
     assert "no kind of change stands out" in unclear
@@ -97,7 +97,7 @@ def seen(value: float, se: float, *, of: str = "e0", pooled: bool = False) -> st
 
 def test_beside_an_unclear_change_it_is_said_how_large_one_had_to_be() -> None:
     said = seen(0.3, 0.2)
-    assert f"A change of {TIMES * 0.2:.1f} of a year would have been seen four times" in said
+    assert f"A difference of {TIMES * 0.2:.1f} of a year would have been seen four times" in said
     years = np.ceil((TIMES * 0.2 / 0.3) ** 2)
     assert f"would be seen as often with {years:.0f} years added up on each side" in said
 
@@ -138,9 +138,9 @@ def test_of_a_clear_change_or_one_without_interval_nothing_is_said() -> None:
     ],
 )
 def test_the_size_has_the_unit_of_a_change(of: str, se: float, size: str) -> None:
-    assert f"A change of {size} would have been seen" in seen(0.1 * se, se, of=of)
+    assert f"A difference of {size} would have been seen" in seen(0.1 * se, se, of=of)
 
 
 def test_a_size_that_rounds_to_nought_is_given_as_a_bound() -> None:
-    assert "A change of less than 0.1 of a year would" in seen(0.001, 0.01)
-    assert "A change of less than 0.001 would" in seen(1e-5, 1e-4, of="H")
+    assert "A difference of less than 0.1 of a year would" in seen(0.001, 0.01)
+    assert "A difference of less than 0.001 would" in seen(1e-5, 1e-4, of="H")
