@@ -6,8 +6,10 @@ from dataclasses import dataclass
 from engine.indicators import GROUPS, find
 from engine.settings import SETTINGS
 from server.results.loading import Holdings
+from server.results.questions import PopulationYear, PopulationYearQuestion
 from server.sentences import names
 from server.sentences.text import _
+from server.store.heading import Heading
 
 Options = tuple[tuple[str, str], ...]  # value and label, for a form
 Grouped = tuple[tuple[str, Options], ...]  # the options under the label of their group
@@ -21,6 +23,28 @@ class Offer:
     sexes: Options
     periods: Options
     settings: Options
+
+
+@dataclass(frozen=True, slots=True)
+class Choice:
+    """A plain form that leads to another area, sex and year, or to other settings."""
+
+    action: str
+    of: PopulationYear
+    offer: Offer
+    figures: str
+    settings: str
+
+
+def choice(heading: Heading, held: Holdings, asked: PopulationYearQuestion) -> Choice:
+    """The form of a page about one population-year."""
+    return Choice(
+        action=f"/c/{heading.collection.code}/{heading.edition.number}/{asked.view}",
+        of=asked.of,
+        offer=offer(held),
+        figures=asked.figures,
+        settings=asked.settings,
+    )
 
 
 def offer(held: Holdings) -> Offer:

@@ -1,59 +1,15 @@
-"""Tables of a population-year page that rest on fitted laws, and on fewer deaths."""
+"""Tables of a population-year page: another population at the highest ages, and fewer deaths."""
 
-import numpy as np
 
 from engine.estimates import Estimate
 from engine.indicators import find
-from engine.laws import Fit
-from server.exports.table import Cell, Column, Gap, Row, Table
+from server.exports.table import Column, Gap, Row, Table
 from server.pages.cells import columns, count, number, triple
-from server.results.models import MOVED, Fitted
+from server.results.models import MOVED
 from server.results.population_year import Findings
 from server.sentences import models as say
 from server.sentences import names
 from server.sentences.text import _
-
-
-def laws(found: Findings) -> Table:
-    """Every law that fits: what it says of old age, and how well it describes the death rates."""
-    heads = (
-        Column("law", _("law")),
-        Column("from", _("from age"), decimals=0),
-        *columns("mode", _("age of most deaths"), 1),
-        *columns("slope", _("rise"), 1, unit=_("% per year of age")),
-        Column("background", _("at all ages alike"), _("per 100,000"), 1),
-        Column("deviance", _("deviance"), decimals=1),
-        Column("free", _("age groups"), _("less parameters"), 0),
-        Column("aic", _("AIC"), decimals=1),
-    )
-    rows = tuple(_law(one) for one in found.laws if one.found)
-    note = _(
-        "Fitted to the closed age groups by Poisson likelihood. A deviance much above the groups"
-        " less parameters says that the law misses something; of laws from the same age the one"
-        " with the lowest AIC describes the rates best."
-    )
-    return Table("laws", _("Laws fitted to the death rates"), heads, rows, note)
-
-
-def _law(one: Fitted) -> Row:
-    return Row(
-        (
-            _(one.law.label),
-            one.first,
-            *(number(float(part)) for part in one.mode),
-            *(number(100 * float(part)) for part in one.slope),
-            _background(one.fit),
-            number(float(one.fit.deviance)),
-            one.free,
-            number(float(one.fit.aic)),
-        )
-    )
-
-
-def _background(fit: Fit) -> Cell:
-    if "background" not in fit.law.names:
-        return number(np.nan, _("This law has no such part."))
-    return count(100_000 * float(np.exp(fit.parameters[fit.law.position("background")])))
 
 
 def implied(found: Findings) -> Table | None:

@@ -49,7 +49,6 @@ class Findings:
     rises: ageing.Rises
     gain: Array  # years of life expectancy at birth for 1 % lower rates, by age of the table
     avoidable: sensitivity.Avoidable  # deaths to avoid for a month of life expectancy at birth
-    laws: tuple[models.Fitted, ...]
     implied: models.Implied | None  # None where the area is part of no larger one
     moved: Moved | None
 
@@ -106,7 +105,6 @@ def population_year(
         rises=ageing.rises(panel, level=settings.level),
         gain=sensitivity.gain_per_percent(indicators.find("e0"), chain),
         avoidable=sensitivity.deaths_to_avoid(indicators.find("e0"), chain),
-        laws=models.fitted(panel, settings.level),
         implied=models.implied(panel, settings),
         moved=moved(
             session,

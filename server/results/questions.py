@@ -32,6 +32,7 @@ __all__ = [
     "BadAddress",
     "BadValue",
     "ComparisonQuestion",
+    "CurvesQuestion",
     "Items",
     "Keys",
     "PopulationYear",
@@ -75,6 +76,13 @@ class PopulationYearQuestion:
         return urlencode(
             [("of", self.of.code), ("figures", self.figures), ("settings", self.settings)]
         )
+
+
+@dataclass(frozen=True, slots=True)
+class CurvesQuestion(PopulationYearQuestion):
+    """Which curve lies behind the death rates? One area, sex and year."""
+
+    view: ClassVar[str] = "curves"
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,22 +1,9 @@
-"""What fitted laws and the deaths at the highest ages say of one population."""
+"""What the deaths at the highest ages say of one population, and where fewer would add a month."""
 
 from engine.estimates import Estimate
 from server.sentences.numbers import interval, number, whole
 from server.sentences.pieces import Sentence, phrase
 from server.sentences.text import _
-
-
-def best(label: str, first: int) -> Sentence:
-    """Which law describes the rates best among those fitted from one age."""
-    return phrase(
-        _("From age {first} the law of {label} describes the death rates best."),
-        first=str(first),
-        label=label,
-    )
-
-
-def none_fits() -> Sentence:
-    return phrase(_("No law could be fitted to these death rates."))
 
 
 def implied(ratio: Estimate, age: int, whole_area: str) -> Sentence:
