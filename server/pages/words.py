@@ -3,9 +3,10 @@
 from dataclasses import dataclass
 from typing import ClassVar
 
-from engine.indicators import INDICATORS
+from engine.indicators import GROUPS
 from server.exports.table import GapKind
 from server.pages.page import Frame, Page
+from server.sentences import names
 from server.sentences import words as say
 from server.sentences.pieces import phrase
 from server.sentences.text import _
@@ -23,7 +24,13 @@ class WordsPage(Page):
 
 
 def build() -> WordsPage:
-    figures = tuple((_(one.label), _(one.definition)) for one in INDICATORS.values())
+    figures = tuple(
+        (
+            _("Figures: {group}", group=names.inside(_(group.label))),
+            tuple((_(one.label), _(one.definition)) for one in group.indicators),
+        )
+        for group in GROUPS
+    )
     return WordsPage(
         frame=Frame(
             title=_("Words"),
@@ -35,7 +42,9 @@ def build() -> WordsPage:
         groups=(
             (_("What is counted"), say.counting()),
             (_("How it is read"), say.reading()),
-            (_("The figures"), figures),
+            (_("How it is compared"), say.comparing()),
+            (_("What stands in for counts"), say.modelling()),
+            *figures,
         ),
         marks=tuple((GapKind(kind), name, meaning) for kind, name, meaning in say.marks()),
     )

@@ -181,3 +181,150 @@ def reading() -> tuple[tuple[str, str], ...]:
             ),
         ),
     )
+
+
+def comparing() -> tuple[tuple[str, str], ...]:
+    """Words for what makes populations, areas and years comparable."""
+    return (
+        (
+            _("years added up"),
+            _(
+                "Deaths and person-years of neighbouring years taken together as if they were one. "
+                "Small areas become steadier, and what happened in one year is spread over all."
+            ),
+        ),
+        (
+            _("standard population, standardised rate"),
+            _(
+                "Where more old people live, more people die. A standardised rate takes the death "
+                "rates of each age as they are, but on both sides the ages of one fixed "
+                "population, the standard: so a difference is not owed to older or younger people. "
+                "It may be compared only with rates by the same standard."
+            ),
+        ),
+        (
+            _("expected deaths, standardised mortality ratio (SMR)"),
+            _(
+                "Expected are the deaths there would have been if people of each age had died as "
+                "often as in the larger area. The ratio sets the deaths there were against them: "
+                "1.10 is a tenth more than expected. Two such ratios do not compare."
+            ),
+        ),
+        (
+            _("older or younger people"),
+            _(
+                "The part of a difference between crude death rates that is owed to the ages of "
+                "the people, and not to how often people of one age die."
+            ),
+        ),
+        (
+            _("years of life lost"),
+            _(
+                "Each death counted by the years still ahead at its age, up to an age such as 75 "
+                "or by a reference life table: early deaths weigh more."
+            ),
+        ),
+        (
+            _("infant, neonatal and post-neonatal deaths, stillbirths"),
+            _(
+                "Infant deaths come before the first birthday: neonatal ones in the first 28 days, "
+                "post-neonatal ones after them. A stillborn child was born without life and is no "
+                "infant death. All are set over births, not over person-years."
+            ),
+        ),
+        (
+            _("unevenness of length of life"),
+            _(
+                "How far lengths of life differ between people, measured in years (e-dagger, "
+                "standard deviation) or as a share of life expectancy (H, Gini, Theil). All are 0 "
+                "if everybody dies at one age, and none says which ages are to blame."
+            ),
+        ),
+        (
+            _("early and late deaths, threshold age"),
+            _(
+                "A life saved at a young age makes lengths of life more alike; one saved at a very "
+                "old age makes them less alike. The threshold age parts the two: deaths below it "
+                "are called early, those above late."
+            ),
+        ),
+        (
+            _("shift and squeeze"),
+            _(
+                "Two ways in which deaths of old age change: all of them come some years later or "
+                "earlier (shift), or they crowd closer around one age or spread out (squeeze)."
+            ),
+        ),
+        (
+            _("smallest difference that could have been seen"),
+            _(
+                "With few deaths a true difference may stay hidden. This is the size that one must "
+                "have to show, beyond chance, in four of five such counts. A “no clear difference” "
+                "rules out no smaller one."
+            ),
+        ),
+        (
+            _("deaths fewer for a month of life expectancy"),
+            _(
+                "How many deaths of one age would have to be avoided in the year for life "
+                "expectancy at birth to be a month longer. It is arithmetic and ranks no lives."
+            ),
+        ),
+    )
+
+
+def modelling() -> tuple[tuple[str, str], ...]:
+    """Words for laws, smoothing and what stands in where counts are too few."""
+    return (
+        (
+            _("law of mortality"),
+            _(
+                "A short formula for how death rates go with age, fitted to the counts. What is "
+                "read off it is marked as a model."
+            ),
+        ),
+        (
+            _("Gompertz"),
+            _("From middle age on death rates grow by the same per cent with each year of age."),
+        ),
+        (
+            _("Gompertz-Makeham"),
+            _("The same, and a part that is equal at all ages is added, as of accidents."),
+        ),
+        (
+            _("Kannisto"),
+            _(
+                "As Gompertz, but the rise slows down at the highest ages and death rates level "
+                "off towards 1 a year."
+            ),
+        ),
+        (
+            _("Siler"),
+            _(
+                "For all ages: death rates that fall through childhood, a part equal at all ages, "
+                "and a part that rises as Gompertz says."
+            ),
+        ),
+        (
+            _("smoothed rates"),
+            _(
+                "Death rates drawn through the counts as an even curve over age, so that chance at "
+                "single ages shows less. A true bend may be smoothed away with it."
+            ),
+        ),
+        (
+            _("borrowed rate"),
+            _(
+                "Where nobody died in the last, open age group, the death rate of the larger area "
+                "stands there. Chance in it is not part of the interval."
+            ),
+        ),
+        (
+            _("people that the deaths imply"),
+            _(
+                "How many very old people there ought to be for the deaths there were, if they "
+                "died as often as in the larger area. A large gap to those counted hints at a "
+                "miscount of deaths or of people."
+            ),
+        ),
+    )
