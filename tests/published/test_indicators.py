@@ -151,7 +151,7 @@ def test_denmarks_e0_spreads_as_simulated_elsewhere(sex: str, year: int, spread:
     panel = denmark.one(sex, year)
     e0 = INDICATORS["e0"]
     got = estimate(e0, panel, SETTINGS_1)
-    assert (got.high - got.low) / (2 * 1.959963985) == pytest.approx(spread, rel=0.02)
+    assert got.se == pytest.approx(spread, rel=0.02)
     deaths = poisson_draws(panel.deaths, np.array(f"{sex}.{year}"), 4000, "test")
     own = replace(
         panel,
