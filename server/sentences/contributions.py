@@ -10,8 +10,6 @@ from server.sentences.numbers import number, whole
 from server.sentences.pieces import Sentence, phrase
 from server.sentences.text import _
 
-BY_PEOPLE = ("cdr", "yll75", "yll_ref")  # weighted by the people there are, who differ as well
-
 
 def carried(ages: str, part: float, difference: float, *, named: bool) -> Sentence:
     """Which ages hold most of a difference in life expectancy; nothing where others work so much
@@ -128,7 +126,7 @@ def remainder(one: Indicator, value: float, difference: float) -> str:
     """Why a row of its own stands beside the ages; empty where rounding is all there is."""
     if not math.isfinite(value) or abs(value) <= 1e-9 * max(abs(difference), 1e-9):
         return ""
-    if one.key in BY_PEOPLE:
+    if one.unit.limits == "gamma":  # its weights are people, in the open group of a standard too
         return _("no death rate: older or younger people")
     return _("no death rate: rule of the first year, or a law’s weights")
 

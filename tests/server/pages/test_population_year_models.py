@@ -1,5 +1,5 @@
-"""What a population-year page says beyond its first table: every indicator in its group, laws,
-deaths to avoid, the highest ages, borrowed rates, and years added up."""
+"""What a population-year page says beyond its first table: every indicator in its group, deaths to
+avoid, the highest ages, borrowed rates, and years added up."""
 
 import shutil
 from collections.abc import Callable, Iterator
@@ -13,7 +13,6 @@ import pytest
 from engine.ages import AgeGrid
 from engine.chain import run
 from engine.indicators import INDICATORS, find
-from engine.laws import LAWS
 from engine.panel import Panel
 from engine.settings import find as named
 from server.exports.table import Gap, Row
@@ -164,23 +163,7 @@ def test_where_no_table_can_be_read_nothing_adds_a_month(page: Page) -> None:
     assert "avoid" not in [table.key for table in built.tables]
 
 
-# ---- laws and the highest ages -------------------------------------------------------------------
-
-
-def test_the_law_with_the_least_criterion_of_those_from_one_age_is_named(page: Page) -> None:
-    built = page("north.f.2014")
-    table = built.table("laws")
-    assert built.fitted
-    assert len(table.rows) == len(LAWS)
-    aic, first = (table.column(key) for key in ("aic", "from"))
-    adult = [row for row in table.rows if row.cells[first] == 40]
-    best = min(adult, key=lambda row: row.cells[aic])  # type: ignore[arg-type, return-value]
-    assert f"the law of {best.cells[0]} describes" in words(built.laws)
-    for row in table.rows:
-        for key in ("mode", "slope"):
-            value, low, high = (row.cells[table.column(key + end)] for end in ("", "_low", "_high"))
-            assert low < value < high  # type: ignore[operator]
-        assert row.cells[table.column("slope")] == pytest.approx(10, rel=0.1)
+# ---- the highest ages ----------------------------------------------------------------------------
 
 
 def test_deaths_and_people_of_the_very_old_fit_or_do_not(page: Page) -> None:

@@ -189,8 +189,11 @@ def test_the_path_is_that_of_each_year_to_the_next() -> None:
     assert_allclose(back, -path, rtol=1e-9, atol=1e-12)
 
 
-def test_what_steps_or_has_no_value_between_has_no_path() -> None:
+def test_what_steps_counts_births_or_has_no_value_between_has_no_path() -> None:
     assert along("lower_quartile", *YEARS).path is None
+    births = [complete(COURSE[year]) for year in YEARS]
+    ends = sides(births[-1], births[0])
+    assert explain("imr", {"imr"}, ends, Panel.stack(births), PLAIN).path is None
     gone = replace(COURSE["2011"], deaths=np.full(len(FIVE), np.nan))
     between = Panel.stack([COURSE["2010"], gone, COURSE["2013"]])
     ends = sides(COURSE["2013"], COURSE["2010"])

@@ -1,4 +1,4 @@
-"""Trends of years added up, against the larger area, and by the ages of a population of one's own."""
+"""Trends of years added up, against a larger area, and by the ages of a population of one's own."""
 
 import numpy as np
 import pytest

@@ -1,4 +1,4 @@
-"""What is said of fitted laws and of the deaths at the highest ages."""
+"""What is said of the deaths at the highest ages, and of where fewer would add a month."""
 
 import pytest
 
@@ -48,10 +48,3 @@ def test_fewest_deaths_for_a_month() -> None:
     few = words(say.avoid("0", 0.4))
     assert "one fewer there is more than enough" in few
     assert "0 fewer" not in few
-
-
-def test_which_law_fits_best_or_that_none_does() -> None:
-    assert words(say.best("Makeham", 40)) == (
-        "From age 40 the law of Makeham describes the death rates best."
-    )
-    assert "No law could be fitted" in words(say.none_fits())
