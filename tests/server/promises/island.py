@@ -88,16 +88,13 @@ CHAINS = ("almanac-1", "almanac-1-kannisto", "almanac-1-3-years", "almanac-2")
 def questions() -> Iterator[Question]:
     for area in AREAS:
         for sex in SEXES:
-            for settings in CHAINS:
-                yield _life(area, sex, REVISED, settings)
-            yield _life(area, sex, FIRST)
-            yield _life(area, sex, LAST)
+            yield _life(area, sex, REVISED)
     for settings in CHAINS:
-        for area in AREAS:
+        for area in (WHOLE.code, "little-auk"):
+            yield _life(area, "m", LAST, settings)
             yield _pair((area, "f", REVISED), (area, "m", REVISED), settings)
     for area in AREAS[1:]:
-        for sex in SEXES:
-            yield _pair((area, sex, REVISED), (WHOLE.code, sex, REVISED))
+        yield _pair((area, "f", REVISED), (WHOLE.code, "f", REVISED))
         yield _pair((area, "p", LAST), (area, "p", FIRST))
     for settings in SETTINGS:
         yield ContentsQuestion(settings=settings)
