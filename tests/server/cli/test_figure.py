@@ -6,7 +6,9 @@ import json
 import os
 import subprocess
 import sys
+from dataclasses import replace
 
+import numpy as np
 import pytest
 from starlette.testclient import TestClient
 
@@ -135,3 +137,33 @@ def test_an_interruption_is_no_fault(
     monkeypatch.setattr("server.cli.figure.series", interrupted)
     said = ebbline("figure", "e0", "--collection", "isle")
     assert (said.code, said.out, said.err) == (130, "", "")
+
+
+def test_rates_ratios_and_years_added_up_are_printed(ebbline: Ebbline, sqlite_url: str) -> None:
+    engine = make_engine(sqlite_url)
+    north = {
+        year: replace(gompertz_panel(seed=year, people=1e6), births=np.array([9e3, 40.0, 15.0]))
+        for year in range(2010, 2015)
+    }
+    panels = {f"north.f.{year}": panel for year, panel in north.items()}
+    panels |= {f"south.f.{year}": gompertz_panel(seed=90 + year) for year in north}
+    with sessions(engine)() as session:
+        edition(session, panels, parents={"north": "isle", "south": "isle"})
+    engine.dispose()
+    said = ebbline(
+        *("figure", "asr_esp2013", "imr", "smr", "--collection", "isle", "--area", "north"),
+        *("--sex", "f", "--settings", "almanac-1-3-years", "--as", "json"),
+    )
+    assert (said.code, said.err) == (0, "")
+    rows = json.loads(said.out)["figures"]["figures"]["rows"]
+    assert [(row["indicator"], row["year"]) for row in rows] == [
+        (key, year) for key in ("asr_esp2013", "imr", "smr") for year in ("2012", "2013", "2014")
+    ]
+    for row in rows:
+        assert row["value_low"] < row["value"] < row["value_high"]
+    deaths = sum(north[year].deaths[0] for year in (2012, 2013, 2014))
+    assert rows[5]["value"] == pytest.approx(1000 * deaths / 27e3)
+    assert {row["unit"] for row in rows[6:]} == {"ratio"}
+    whole = ebbline("figure", "smr", "--collection", "isle", "--settings", "almanac-1-3-years")
+    assert "part of no larger one" in whole.out
+    assert whole.code == 0

@@ -10,6 +10,7 @@ from server.pages.trend import TrendPage, build
 from server.results.loading import NotInEdition
 from server.results.questions import TrendQuestion
 from server.results.series import TooLarge
+from server.sentences.numbers import number
 from server.sentences.pieces import plain
 from server.store.connect import Session
 from server.store.heading import heading
@@ -134,3 +135,66 @@ def test_areas_that_are_not_there_and_questions_too_large_are_refused(isle: Sess
             heading(isle, "isle", 1),
             TrendQuestion("mode", ("isle", "north", "rock") * 60, ("f", "m", "p"), "2005", "2014"),
         )
+
+
+def told(built: TrendPage) -> dict[str, str]:
+    return {caution.word: caution.text for caution in built.cautions}
+
+
+def test_of_ratios_to_the_whole_only_the_last_is_told(isle: Session) -> None:
+    built = page(isle, "smr", areas=("rock", "north"), sexes=("f",))
+    estimates = built.table("estimates")
+    cells = rows(estimates, area="north", sex="f", year="2014")[0]
+    value, low, high = (
+        number(cells[estimates.column(key)], 2)  # type: ignore[arg-type]
+        for key in ("value", "value_low", "value_high")
+    )
+    assert f"among women of North in 2014: {value} ({low} to {high})." in words(built)
+    for claim in ("rose", "fell", "No clear change", "two halves", "Over the same", "out of five"):
+        assert claim not in words(built), claim
+    assert "do not compare with one another" in told(built)["Not comparable"]
+    assert "Small numbers" not in told(built)  # it would set one beside a change
+    changes, lives = built.further
+    for link in (piece for piece in changes if piece.href):
+        assert "&of=e0&" in link.href
+    assert "population-year?of=north.f.2014" in lives[1].href
+    assert "Not comparable" not in told(page(isle, "asr_esp2013", areas=("north",)))
+
+
+def test_the_whole_itself_has_no_ratio_and_says_why(isle: Session) -> None:
+    built = page(isle, "smr", areas=("isle",), sexes=("f",))
+    assert not built.drawn
+    assert "fewer than two" in words(built)
+    assert "part of no larger one" in told(built)["Not drawn"]
+    assert built.further == ()
+
+
+def test_how_small_a_change_could_have_been_seen_stands_beside_an_unclear_one(
+    isle: Session,
+) -> None:
+    unclear = words(page(isle, areas=("rock",), sexes=("f",), first="2010"))  # type: ignore[arg-type]
+    assert "No clear change" in unclear
+    assert "would have been seen four times out of five" in unclear
+    clear = words(page(isle, areas=("north",), sexes=("f",)))
+    assert "gained" in clear
+    assert "four times out of five" not in clear
+
+
+def test_a_standardised_rate_has_its_unit_and_leads_on_to_its_own_comparison(
+    isle: Session,
+) -> None:
+    built = page(isle, "asr_esp2013", areas=("north",), sexes=("f",))
+    assert "among women of North fell by" in words(built)
+    assert "per 100,000 person-years between 2005 and 2014" in words(built)
+    assert "&of=asr_esp2013&" in built.further[0][1].href
+
+
+def test_years_added_up_are_named_by_their_first_and_last(isle: Session) -> None:
+    pooled = {"areas": ("north",), "sexes": ("f",), "settings": "almanac-1-3-years"}
+    built = page(isle, **pooled)  # type: ignore[arg-type]
+    assert "between 2005–2007 and 2012–2014" in words(built)
+    assert [row.cells[0] for row in built.table("years").rows] == list(reversed(YEARS[2:]))
+    assert "the year named and the 2 before it" in told(built)["Years added up"]
+    assert "this=north.f.2014&that=north.f.2007" in built.further[0][1].href
+    assert "settings=almanac-1-3-years" in built.further[0][1].href
+    assert "Years added up" not in told(page(isle, areas=("north",)))
