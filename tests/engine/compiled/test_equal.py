@@ -117,6 +117,18 @@ def test_contributions(grid: AgeGrid, sexes: tuple[str, str], settings: Settings
     assert (size > 0).any()
 
 
+def test_contributions_where_the_open_rate_is_hundreds_of_times_the_other() -> None:
+    that = gompertz_panel(GRIDS["abridged"])
+    fewer = that.deaths.copy()
+    fewer[..., -1] *= 0.002
+    this = replace(that, deaths=fewer)
+    fast, plain = (
+        bulk.contributions(this, that, PLAIN, by=by).contributions.by_age
+        for by in ("compiled", "numpy")
+    )
+    assert_allclose(fast, plain, rtol=1e-12, atol=1e-12)
+
+
 def test_a_pair_of_equal_populations_has_no_difference_to_explain() -> None:
     panel = gompertz_panel(GRIDS["single"], slope=np.array([0.09, 0.1]))
     found = bulk.contributions(panel, panel, PLAIN, by="compiled").contributions
