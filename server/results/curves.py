@@ -4,8 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.special import ndtri
-from scipy.stats import chi2
+from scipy.special import chdtri, ndtri
 
 from engine import graduation, relational, smoothing, ungrouping
 from engine import settings as named
@@ -229,7 +228,7 @@ def related(chain: Chain, area: str) -> Related | None:
         limited(float(found.beta), float(found.beta_error), level),
         deviance,
         freedom,
-        freedom > 0 and deviance > float(chi2.ppf(level, freedom)),
+        freedom > 0 and deviance > float(chdtri(freedom, 1 - level)),
     )
 
 

@@ -5,8 +5,7 @@ from dataclasses import dataclass
 from typing import NamedTuple
 
 import numpy as np
-from scipy.special import ndtri
-from scipy.stats import chi2
+from scipy.special import chdtri, ndtri
 
 from engine import laws
 from engine.panel import Panel
@@ -64,7 +63,7 @@ class Fitted:
 
         Source: McCullagh & Nelder (1989), Generalized Linear Models, chapter 2 (chi-square).
         """
-        return float(chi2.ppf(self.level, self.free))
+        return float(chdtri(self.free, 1 - self.level))
 
     @property
     def misses(self) -> bool:

@@ -5,6 +5,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 from numpy.testing import assert_allclose
+from scipy.stats import chi2
 
 from engine.ages import AgeGrid
 from engine.laws import LAWS
@@ -113,3 +114,15 @@ def test_the_law_with_the_least_criterion_of_those_of_adults_is_best() -> None:
     assert len(adult) == 3
     assert chosen.fit.aic == min(float(one.fit.aic) for one in adult)
     assert laws.best(()) is None
+
+
+@pytest.mark.parametrize("level", [0.8, 0.95])
+def test_a_law_misses_where_chance_would_not_bring_it_so_far(level: float) -> None:
+    """The bound is that of the chi-square distribution; scipy has it too, at the cost of a second
+    of loading."""
+    panel = gompertz_panel(people=3e6, seed=1)
+    for one in laws.fitted(panel, level):
+        assert_allclose(one.bound, chi2.ppf(level, one.free), rtol=1e-12)
+        assert one.misses == (one.fit.deviance > one.bound)
+    late = replace(panel, deaths=panel.deaths * np.where(np.array(FIVE.starts) == 60, 1.2, 1.0))
+    assert all(one.misses for one in laws.fitted(late, level))
