@@ -127,18 +127,21 @@ def laws(found: Curves) -> Table:
     heads = (
         Column("law", _("law")),
         Column("from", _("from age"), decimals=0),
-        *columns("mode", _("age of most deaths"), 1),
+        *columns("mode", _("most deaths"), 1, unit=_("about age")),
         *columns("slope", _("rise"), 1, unit=_("% per year of age")),
-        Column("background", _("at all ages alike"), _("per 100,000"), 1),
+        Column("background", _("at any age"), _("per 100,000"), 1),
         Column("deviance", _("deviance"), decimals=1),
-        Column("free", _("age groups"), _("less parameters"), 0),
+        Column("free", _("groups"), _("less parameters"), 0),
         Column("aic", _("AIC"), decimals=1),
     )
     rows = tuple(_law_row(one) for one in found.laws if one.found)
+    lost = [_(one.law.label) for one in found.laws if not one.found]
     note = _(
         "A deviance much above the groups less parameters says that the law misses something; of"
         " laws from the same age the one with the lowest AIC describes the rates best."
     )
+    if lost:
+        note += " " + _("Without a best fit here: {laws}.", laws=names.listed(lost))
     return Table("laws", _("Laws fitted to the death rates"), heads, rows, note)
 
 
@@ -192,9 +195,13 @@ def _single_rows(of: Single) -> tuple[Row, ...]:
     )
     why = _("Nobody died in that age group.")
     return tuple(
-        Row((age, *(number(float(part), why) for part in row)))
+        Row((age, *(_or_nil(float(part), why) for part in row)))
         for age, row in enumerate(zip(*parts, strict=True))
     )
+
+
+def _or_nil(value: float, why: str) -> Cell:
+    return count(value) if np.isfinite(value) else number(value, why)
 
 
 def relation(of: Related | None) -> Table | None:

@@ -165,12 +165,12 @@ def farthest(ages: str, deaths: float, *, clear: bool) -> str:
     count = number(abs(deaths), 0)
     if deaths > 0:
         return _(
-            "Farthest from the law are ages {ages}, with {count} deaths more than it expects",
+            "Farthest from the law: age {ages}, with {count} deaths more than it expects",
             ages=ages,
             count=count,
         )
     return _(
-        "Farthest from the law are ages {ages}, with {count} deaths fewer than it expects",
+        "Farthest from the law: age {ages}, with {count} deaths fewer than it expects",
         ages=ages,
         count=count,
     )
