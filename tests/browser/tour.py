@@ -8,19 +8,30 @@ READ = {
     "contents": "/c/quillmere/2/contents",
     "population-year": f"/c/quillmere/2/population-year?of=tollbay.m.2017{_CHOICES}",
     "population-year-open": f"/c/quillmere/2/population-year?of=stonereach.f.2022{_CHOICES}",
-    "population-year-small": f"/c/quillmere/2/population-year?of=little-auk.p.2023{_CHOICES}",
+    "population-year-small": "/c/quillmere/2/population-year"
+    "?of=little-auk.p.2023&figures=released&settings=almanac-2",
+    "curves": f"/c/quillmere/2/curves?of=northlade.m.2019{_CHOICES}",
+    "curves-small": f"/c/quillmere/2/curves?of=little-auk.f.2020{_CHOICES}",
+    "population-year-pooled": "/c/quillmere/2/population-year"
+    "?of=northlade.f.2020&figures=released&settings=almanac-1-3-years",
     "comparison": "/c/quillmere/2/comparison"
     f"?this=northlade.m.2017&that=tollbay.m.2017&of=e0{_CHOICES}",
     "comparison-years": "/c/quillmere/2/comparison"
     f"?this=harrowfen.f.2016&that=harrowfen.f.2002&of=e0{_CHOICES}",
     "comparison-same-chance": "/c/quillmere/2/comparison"
     f"?this=little-auk.f.2019&that=little-auk.f.2018&of=e0{_CHOICES}",
+    "comparison-asked": "/c/quillmere/2/comparison"
+    f"?this=northlade.f.2021&that=northlade.f.2011&of=edagger{_CHOICES}",
+    "comparison-no-ages": "/c/quillmere/2/comparison"
+    f"?this=northlade.f.2021&that=tollbay.f.2021&of=mode{_CHOICES}",
     "comparison-superseded": "/c/quillmere/1/comparison"
     f"?this=northlade.f.2021&that=northlade.f.2011&of=e0{_CHOICES}",
     "trend": "/c/quillmere/2/trend"
     f"?of=e0&area=northlade&area=tollbay&sex=m&from=1999&to=2023{_CHOICES}",
     "trend-sexes": "/c/quillmere/2/trend"
     f"?of=e65&area=elderwick&area=quillmere&sex=f&sex=m&from=2010&to=2023{_CHOICES}",
+    "trend-rates": "/c/quillmere/2/trend"
+    f"?of=asr_esp2013&area=quillmere&sex=f&sex=m&from=2001&to=2023{_CHOICES}",
     "trend-undefined": "/c/quillmere/2/trend"
     f"?of=H&area=quillmere&area=stonereach&sex=f&from=1999&to=2023{_CHOICES}",
     "methods": "/methods",
