@@ -136,8 +136,11 @@ class _Lowered:
             panel.over(lambda array: array[None]),
             deaths=panel.deaths * (1 - (1 - share[..., None]) * at),
         )
-        moved = self.indicator.value(run(fewer, self.chain.settings))
-        return np.asarray((moved - self.indicator.value(self.chain)) / self.gain)
+        chain = run(fewer, self.chain.settings)
+        moved = self.indicator.value(chain) - self.indicator.value(self.chain)
+        # a rate borrowed for want of deaths is another population's: no deaths avoided bring it
+        lent = chain.borrowed & ~self.chain.borrowed
+        return np.asarray(np.where(lent, np.nan, moved) / self.gain)
 
     def share_left(self, at_none: Array) -> Array:
         """The share of deaths that leaves exactly the gain, by false position (Illinois); nan where

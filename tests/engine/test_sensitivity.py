@@ -252,6 +252,19 @@ def test_a_month_of_life_is_out_of_reach_where_few_die() -> None:
 
 
 @pytest.mark.fast
+def test_no_deaths_are_avoided_by_borrowing_a_rate() -> None:
+    """With a whole to borrow from, a population with deaths in the open group is as without one."""
+    panel = of_a_whole(people=1e5, seed=2)
+    own, with_whole = (
+        sensitivity.deaths_to_avoid(indicator("e0"), run(panel, find(key)))
+        for key in ("almanac-1", "almanac-1-borrow")
+    )
+    assert np.isfinite(own.deaths[-1])
+    for name in ("deaths", "most"):
+        np.testing.assert_array_equal(getattr(with_whole, name), getattr(own, name))
+
+
+@pytest.mark.fast
 def test_infant_deaths_over_births_are_avoided_in_the_first_year() -> None:
     panel = of_a_whole(people=1e6, infant=0.02)
     chain = run(panel, find("almanac-1"))
