@@ -125,12 +125,14 @@ def _moves(
     own = np.moveaxis(mean[..., None] * np.eye(len(grid)), -1, 0)  # [moved, ..., age]
     by_end, by_start = bends(indicator, line, mean)
 
-    def side(sign: int, bend: Array, chain: Chain) -> _Moves:
+    def side(sign: int, bend: Array, chain: Chain, rests_on: Array) -> _Moves:
         through = grid.regroup(bend[:, None] * _first(steps), groups)
         alone = grid.regroup(sign * own, groups)[:, None]
-        return _Moves(*(_per_death(by_rate, chain) for by_rate in (alone, through)))
+        lent = (rests_on > 0) & (chain.rates.mx == 0)  # borrowed, hence known: no death moves it
+        moving = 1.0 - np.moveaxis(lent, -1, 0)[:, None, ..., None]
+        return _Moves(*(_per_death(moving * by_rate, chain) for by_rate in (alone, through)))
 
-    return side(1, by_end, line.end), side(-1, by_start, line.start)
+    return side(1, by_end, line.end, line.to_mx), side(-1, by_start, line.start, line.from_mx)
 
 
 def _per_death(by_rate: Array, chain: Chain) -> Array:

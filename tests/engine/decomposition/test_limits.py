@@ -116,6 +116,24 @@ def test_limits_of_all_ages_together_are_those_of_the_difference(key: str, setti
 
 
 @pytest.mark.fast
+def test_no_death_moves_a_borrowed_rate() -> None:
+    """It is taken as known, so it is all one how many people there are at these ages."""
+    grid, settings = AgeGrid((0, 1, *range(5, 86, 5))), find("almanac-1-borrow")
+    whole = gompertz_panel(people=2e6).regroup(grid)
+    this, that = (
+        replace(gompertz_panel(people=people).regroup(grid), whole=whole) for people in (5e3, 1e5)
+    )
+    this.deaths[-1] = 0
+    fewer = replace(this, exposure=np.append(this.exposure[:-1], this.exposure[-1] / 10))
+    for pair in ((this, that), (that, this)):
+        found = contribution_limits(INDICATORS["e0"], *pair, settings)
+        beside = (fewer if one is this else one for one in pair)
+        expected = contribution_limits(INDICATORS["e0"], *beside, settings)
+        np.testing.assert_allclose(found.low, expected.low, rtol=1e-9)
+        np.testing.assert_allclose(found.high, expected.high, rtol=1e-9)
+
+
+@pytest.mark.fast
 def test_limits_count_shared_deaths_once() -> None:
     """Against a whole it is part of; taken as independent, the interval would be too wide."""
     part = many(gompertz_panel(seed=11, people=3e6, level=2e-5, slope=0.095))
