@@ -142,6 +142,8 @@ def _lead(found: Comparison) -> tuple[Sentence, ...]:
     if found.same:
         return ()
     said.append(_seen(found))
+    if found.question.of == "cdr":
+        said.append(_crude(found))
     said.append(basis.standard(used(indicators.find(found.question.of), found.grid)))
     if part is not None and asked.clear:
         most = charts.most(found, part)
@@ -162,9 +164,15 @@ def _ratios(found: Comparison) -> tuple[Sentence, ...]:
         return ()
     if of.unevenness is not None:
         parts.append(kinds.unevenness(of.unevenness.first, of.unevenness.second))
-    if of.crude is not None:
-        parts.append(kinds.crude(of.crude.first, of.crude.second))
-    return tuple(parts)
+    if found.question.of != "cdr":
+        parts.append(_crude(found))
+    return tuple(part for part in parts if part)
+
+
+def _crude(found: Comparison) -> Sentence:
+    """What older or younger people make of the difference in crude rates."""
+    of = found.explained.crude
+    return () if of is None else kinds.crude(of.first, of.second)
 
 
 def _not_parted(found: Comparison) -> tuple[Sentence, ...]:
@@ -214,6 +222,7 @@ def _cautions(found: Comparison) -> tuple[Caution, ...]:
                 if few_deaths(indicators.INDICATORS["asr_esp2013"], side.panel.deaths)
             ),
             basis.law(found.settings, found.grid.open_age) if modelled else None,
+            basis.smoothed(found.settings),
         ],
         below=[
             basis.safe_side(indicators.find(found.question.of), fewest),

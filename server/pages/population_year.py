@@ -7,7 +7,7 @@ import numpy as np
 
 from engine.indicators import INDICATORS
 from engine.settings import span
-from engine.standardisation import few_deaths
+from engine.standardisation import FEW_DEATHS, few_deaths
 from server.charts.chart import Chart
 from server.exports.table import Table
 from server.pages import frames
@@ -70,6 +70,7 @@ def build(
             found.period,
             found.estimates["e0"],
             reason(int(found.estimates["e0"].reason), found.settings),
+            years_added=found.settings.years > 1,
         ),
         lead=_lead(found),
         tables=_tables(found),
@@ -106,11 +107,11 @@ def _tables(found: Findings) -> tuple[Table, ...]:
 
 def _avoid(found: Findings) -> Sentence:
     of, labels = found.avoidable, found.loaded.panel.grid.labels
-    known = np.isfinite(of.deaths)
-    if not found.gainful or not known.any():
+    fewer = np.where(found.loaded.panel.deaths >= FEW_DEATHS, of.deaths, np.nan)
+    if not found.gainful or not np.isfinite(fewer).any():
         return ()
-    at = int(np.nanargmin(of.deaths))
-    return models_say.avoid(labels[at], float(of.deaths[at]))
+    at = int(np.nanargmin(fewer))
+    return models_say.avoid(labels[at], float(of.deaths[at]), float(of.there[at]))
 
 
 def _implied(found: Findings) -> Sentence:
@@ -186,12 +187,13 @@ def _cautions(found: Findings) -> tuple[Caution, ...]:
             if few_deaths(INDICATORS["asr_esp2013"], panel.deaths)
             else None,
             basis.law(found.settings, panel.grid.open_age) if found.chain.modelled else None,
+            basis.smoothed(found.settings),
             basis.borrowed(panel.grid.open_age, whole) if found.chain.borrowed else None,
             basis.early_end(panel.grid.open_age) if found.chain.open_low else None,
         ],
         below=[
             basis.safe_side(INDICATORS["e0"], float(panel.exposure.sum())),
-            basis.no_deaths(empty),
+            basis.no_deaths(empty, drawn=found.settings.smoothing != "none"),
             basis.joined(joined),
             basis.regrouped(before.period)
             if before and before.loaded.panel.grid != panel.grid

@@ -19,6 +19,7 @@ from server.sentences.text import _
 
 RADIX = 100_000
 DAYS = 365.25
+NO_TWO = "Two ratios to a larger area do not compare with one another."
 
 
 def figures(found: Findings) -> Table:
@@ -69,6 +70,8 @@ def _figures(
         key: [found.estimates[key], *([changes[key]] if key in changes else [])] for key in keys
     }
     note = " ".join([note, *why_missing(shown, found.settings, said)])
+    if before and set(keys) - set(changes):
+        note += " " + _(NO_TWO)
     rows = tuple(_figure_row(found, key) for key in keys)
     return Table(name, title, tuple(heads), rows, note)
 
@@ -108,7 +111,7 @@ def _figure_row(found: Findings, key: str) -> Row:
     for side in sides:
         cells += triple(side, indicator.unit, found.settings)
     if before and key not in before.change:
-        cells += [Gap(GapKind.UNDEFINED, _("Two of these do not compare with one another."))] * 3
+        cells += [Gap(GapKind.UNDEFINED, _(NO_TWO))] * 3
     whole = whole_of(found)
     return Row(
         tuple(cells),

@@ -183,6 +183,7 @@ def _cautions(found: Series) -> tuple[Caution, ...]:
         beside=[
             basis.provisional(sorted(provisional)),
             basis.pooled(found.settings),
+            basis.smoothed(found.settings),
             say.no_two(found.indicator),
             say.small(small),
             *_missing(found),

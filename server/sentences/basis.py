@@ -117,9 +117,24 @@ def safe_side(indicator: Indicator, lived: float) -> Told:
     return (_("Wide intervals"), said) if said else None
 
 
-def no_deaths(ages: Sequence[str]) -> Told:
+def smoothed(settings: Settings) -> Told:
+    if settings.smoothing == "none":
+        return None
+    return _("Smoothed"), _(
+        "The death rates are those of an even curve drawn through the counts; a true bend may be"
+        " smoothed away."
+    )
+
+
+def no_deaths(ages: Sequence[str], *, drawn: bool = False) -> Told:
+    """That nobody died at some ages; `drawn` where a smooth curve gives rates there all the same."""
     if not ages:
         return None
+    if drawn:
+        return _("No deaths"), _(
+            "Nobody died at ages {ages}: a rate above 0 there is the smooth curve’s.",
+            ages=listed(ages, most=12),
+        )
     return _("No deaths"), _(
         "Nobody died at ages {ages}: the rates there are nil, which a ratio scale cannot show.",
         ages=listed(ages, most=12),
@@ -163,7 +178,7 @@ def early_end(age: int) -> Told:
 def law(settings: Settings, open_age: int) -> Told:
     return _("Model"), _(
         "Above {age} a law fitted from age {first} stands in for the counts; what is read there is"
-        " the law's.",
+        " the law’s.",
         age=open_age,
         first=settings.fit_from,
     )
@@ -177,6 +192,12 @@ def reading(settings: Settings) -> tuple[Told, ...]:
             _(
                 "Life expectancy sums up one year’s death rates. It is no forecast of how long"
                 " anyone will live."
+            )
+            if settings.years == 1
+            else _(
+                "Life expectancy sums up the death rates of {count} years taken together. It is no"
+                " forecast of how long anyone will live.",
+                count=settings.years,
             ),
         ),
         chance(),

@@ -1,6 +1,7 @@
 """What the deaths at the highest ages say of one population, and where fewer would add a month."""
 
 from engine.estimates import Estimate
+from engine.standardisation import FEW_DEATHS
 from server.sentences.numbers import interval, number, whole
 from server.sentences.pieces import Sentence, phrase
 from server.sentences.text import _
@@ -51,21 +52,27 @@ def out_of_reach() -> str:
     return _("Not even without all deaths of this age.")
 
 
-def avoid(ages: str, deaths: float) -> Sentence:
-    """Where the fewest deaths make a month; in a small population not one whole death may do."""
+def avoid(ages: str, deaths: float, there: float) -> Sentence:
+    """Where, among ages that few deaths do not decide, the fewest deaths make a month; in a small
+    population not one whole death may do."""
     if deaths < 1:
         return phrase(
             _(
-                "A month of life expectancy takes fewest deaths in the age group {ages}: one fewer"
-                " there is more than enough, all other ages as they are."
+                "Of the age groups with at least {least} deaths, {ages} takes the fewest for a"
+                " month of life expectancy: one fewer of {there} is more than enough, all other"
+                " ages as they are."
             ),
+            least=whole(FEW_DEATHS),
             ages=ages,
+            there=whole(there),
         )
     return phrase(
         _(
-            "A month of life expectancy takes fewest deaths in the age group {ages}: {deaths} fewer"
-            " there, all other ages as they are."
+            "Of the age groups with at least {least} deaths, {ages} takes the fewest for a month of"
+            " life expectancy: {deaths} fewer of {there}, all other ages as they are."
         ),
+        least=whole(FEW_DEATHS),
         ages=ages,
         deaths=whole(deaths),
+        there=whole(there),
     )

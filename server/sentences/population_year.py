@@ -28,8 +28,11 @@ def known(estimates: Estimates, key: str) -> bool:
     return math.isfinite(float(estimates[key].value))
 
 
-def answer(sex: str, area: str, period: str, e0: Estimate, why_not: str) -> Sentence:
-    """The page's first line; `why_not` says why there is no figure where there is none."""
+def answer(
+    sex: str, area: str, period: str, e0: Estimate, why_not: str, *, years_added: bool = False
+) -> Sentence:
+    """The page's first line; `why_not` says why there is no figure where there is none. `period`
+    may be several years added up."""
     who = names.population_first(sex, area)
     unit = INDICATORS["e0"].unit
     if not math.isfinite(float(e0.value)):
@@ -40,15 +43,18 @@ def answer(sex: str, area: str, period: str, e0: Estimate, why_not: str) -> Sent
             why=why_not,
         )
     value = f"{shown(e0, unit)}\N{NO-BREAK SPACE}{_('years of life')}"
+    rates = _("death rates of those years") if years_added else _("death rates of that year")
     if not has_interval(e0):
         return phrase(
-            _("{who} in {year} could expect {value} at the death rates of that year."),
+            _("{who} in {year} could expect {value} at the {rates}."),
+            rates=rates,
             who=who,
             year=period,
             value=value,
         )
     return phrase(
-        _("{who} in {year} could expect {value} {interval} at the death rates of that year."),
+        _("{who} in {year} could expect {value} {interval} at the {rates}."),
+        rates=rates,
         who=who,
         year=period,
         value=value,

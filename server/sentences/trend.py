@@ -237,7 +237,8 @@ def meaning(key: str) -> Sentence:
             " age, at 1 the risk of dying would be the same at every age."
         ),
         "smr": _(
-            "At 1 there were as many deaths as the death rates of the larger area would bring."
+            "1 is as many deaths as the death rates of the larger area would bring, 1.10 a tenth"
+            " more."
         ),
         "gini": _("The lower it is, the more alike are lengths of life: at 0 all would be alike."),
         "ageing_rate": _(
