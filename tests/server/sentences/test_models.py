@@ -44,7 +44,7 @@ def test_where_they_do_not_fit_it_is_said_which_way(
 
 def test_fewest_deaths_for_a_month() -> None:
     many = words(say.avoid("0", 41.6, 96.0))
-    assert "0 takes the fewest for a month of life expectancy: 42 fewer of 96" in many
+    assert "the group 0 takes fewest for a month of life expectancy: 42 fewer of 96" in many
     few = words(say.avoid("0", 0.4, 21.0))
     assert "one fewer of 21 is more than enough" in few
     assert "0 fewer" not in few
