@@ -1,6 +1,6 @@
 """Shift, squeeze and early deaths: a difference in life expectancy told by a fitted law."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.polynomial.legendre import leggauss
@@ -9,9 +9,11 @@ from scipy.special import ndtri
 
 from engine.ages import Array
 from engine.chain import Chain, run
+from engine.chance import miscount
 from engine.estimates import Estimate, Reason
 from engine.hazards import MAKEHAM_INFANT, Law
 from engine.indicator import Needs
+from engine.indicators import difference, find
 from engine.laws import Fit, fit
 from engine.panel import Panel
 from engine.reasons import judge
@@ -20,7 +22,7 @@ from engine.survival import lives, mode_of
 from engine.tables import Partials
 
 PARTS = ("shift", "squeeze", "background", "infant")
-VALUES = (*PARTS, "unexplained", "difference")
+VALUES = (*PARTS, "unexplained")
 OWNER = {"level": 0, "slope": 1, "background": 2, "infant": 3, "decline": 3}  # place in PARTS
 NODES = 12  # of Gauss and Legendre along the line
 FEW = 4  # as many for the standard errors: right to a few parts in a million
@@ -37,7 +39,7 @@ class ShiftSqueeze:
     background: Estimate  # the death rate that is the same at all ages
     infant: Estimate  # early deaths
     unexplained: Estimate  # what the two laws miss: the tables' difference less the laws'
-    difference: Estimate  # of the life tables
+    difference: Estimate  # of the life tables, as it is given everywhere
     laws: tuple[Fit, Fit]  # of this and that
     misfits: tuple[Array, Array]  # [...], years by which a law's e0 is above its table's
 
@@ -58,7 +60,8 @@ def shift_squeeze(
     (twelve Gauss-Legendre nodes), so that the parts add up to the laws' difference. What the tables
     differ by beyond that is the rest, printed and spread over nothing. The chances in the deaths
     reach each part through the fit, and the rest through fit and table; deaths that stand in both
-    (`shared`) count once.
+    (`shared`) count once. An error of the population that the settings name is each side's own. The
+    difference itself has the limits that it has everywhere (`engine.uncertainty.difference`).
 
     The default law has the infants' deaths as an excess in the first year. Siler's, in which they
     decline with age, is the alternative: where few die between 1 and 4 its decline has no best
@@ -78,21 +81,50 @@ def shift_squeeze(
              32 (the law by its mode).
     """
     _require(this, that, shared, law)
-    here, there = run(this, settings), run(that, settings)
+    chains = run(this, settings), run(that, settings)
     sides = _fitted(this, law), _fitted(that, law)
-    misfits = _misfit(here, sides[0]), _misfit(there, sides[1])
+    misfits = _misfit(chains[0], sides[0]), _misfit(chains[1], sides[1])
     with np.errstate(all="ignore"):
-        parts = _parts(law, sides[0].parameters, sides[1].parameters, sides[0].centre)
-        table = here.table.ex[..., 0] - there.table.ex[..., 0]
-        moved = _moved(here, sides, 0), _moved(there, sides, 1)
-        se = np.sqrt(_variance(moved, this, that, shared))
-    values = [*parts, table - parts.sum(axis=0), table]
-    reasons = _reasons(here, there, misfits)
+        values = _values(chains, sides)
+        moved = _moved(chains[0], sides, 0), _moved(chains[1], sides, 1)
+        by_chance = np.sqrt(_variance(moved, this, that, shared))
+        se = np.where(by_chance > 0, np.hypot(by_chance, _astray(this, that, settings, law)), 0.0)
+    reason = _reasons(*chains, misfits)
     named = {
         name: _estimate(value, reason, error, settings.level)
-        for name, value, reason, error in zip(VALUES, values, reasons, se, strict=True)
+        for name, value, error in zip(VALUES, values, se, strict=True)
     }
-    return ShiftSqueeze(**named, laws=sides, misfits=misfits)
+    whole = difference(find("e0"), this, that, settings, shared=shared)
+    return ShiftSqueeze(**named, difference=whole, laws=sides, misfits=misfits)
+
+
+def _values(chains: tuple[Chain, Chain], sides: tuple[Fit, Fit]) -> Array:
+    """The parts and the rest, [value, ...]."""
+    this, that = sides
+    parts = _parts(this.law, this.parameters, that.parameters, this.centre)
+    table = chains[0].table.ex[..., 0] - chains[1].table.ex[..., 0]
+    return np.concatenate([parts, (table - parts.sum(axis=0))[None]])
+
+
+def _astray(this: Panel, that: Panel, settings: Settings, law: Law) -> Array:
+    """Standard deviation of each value that is owed to persons counted wrongly, on each side for
+    itself: half of what it moves by from one standard deviation too few to one too many."""
+    error = miscount(this.grid, settings)
+    if not error.any():
+        return np.zeros(())
+
+    def values(ours: Array, theirs: Array) -> Array:
+        counted = (
+            replace(this, exposure=this.exposure * (1 + ours)),
+            replace(that, exposure=that.exposure * (1 + theirs)),
+        )
+        upper, lower = (run(panel, settings) for panel in counted)
+        return _values((upper, lower), (_fitted(counted[0], law), _fitted(counted[1], law)))
+
+    none = np.zeros_like(error)
+    by_this = values(-error, none) - values(error, none)
+    by_that = values(none, -error) - values(none, error)
+    return np.asarray(np.hypot(by_this, by_that) / 2)
 
 
 def _fitted(panel: Panel, law: Law) -> Fit:
@@ -158,7 +190,7 @@ def _moved(chain: Chain, sides: tuple[Fit, Fit], which: int) -> Array:
     at_birth = (np.arange(len(chain.table.grid)) == 0).astype(float)
     table = chain.rates.per_death(chain.pull(Partials(ex=at_birth)))
     table = table if which == 0 else -table
-    return np.concatenate([parts, (table - parts.sum(axis=0))[None], table[None]])
+    return np.concatenate([parts, (table - parts.sum(axis=0))[None]])
 
 
 def _by_parameters(sides: tuple[Fit, Fit], which: int) -> Array:
@@ -190,15 +222,14 @@ def _misfit(chain: Chain, side: Fit) -> Array:
     return np.asarray(expectancy - chain.table.ex[..., 0])
 
 
-def _reasons(here: Chain, there: Chain, misfits: tuple[Array, Array]) -> list[NDArray[np.uint8]]:
-    """Of each value, [value][...]."""
+def _reasons(here: Chain, there: Chain, misfits: tuple[Array, Array]) -> NDArray[np.uint8]:
+    """Of the parts and the rest, [...]."""
     needs = Needs(open_deaths=True)
     this, that = (judge(needs, chain, chain.table.ex[..., 0]) for chain in (here, there))
     reason = np.where(this == Reason.NONE, that, this)
     with np.errstate(invalid="ignore"):
         fits = (np.abs(misfits[0]) <= WORST) & (np.abs(misfits[1]) <= WORST)
-    by_law = np.where((reason == Reason.NONE) & ~fits, np.uint8(Reason.NO_LAW), reason)
-    return [by_law] * (len(PARTS) + 1) + [reason]
+    return np.where((reason == Reason.NONE) & ~fits, np.uint8(Reason.NO_LAW), reason)
 
 
 def _estimate(value: Array, reason: NDArray[np.uint8], se: Array, level: float) -> Estimate:

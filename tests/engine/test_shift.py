@@ -8,6 +8,7 @@ import pytest
 from engine.ages import AgeGrid
 from engine.estimates import Reason
 from engine.hazards import GOMPERTZ, MAKEHAM_INFANT, SILER, Law, grouped, local
+from engine.indicators import INDICATORS, difference
 from engine.panel import Panel
 from engine.settings import find
 from engine.shift import PARTS, VALUES, ShiftSqueeze, shift_squeeze
@@ -16,6 +17,7 @@ from tests.published import denmark
 
 GRID = AgeGrid((0, 1, *range(5, 100, 5)))
 PLAIN = find("almanac-1")
+ALL = (*VALUES, "difference")
 LAWS = pytest.mark.parametrize("law", [MAKEHAM_INFANT, SILER], ids=lambda law: law.key)
 BASE = {"mode": 83.0, "slope": 0.1, "background": 5e-4, "infant": 0.006, "decline": 1.5}
 OTHER = {"mode": 86.0, "slope": 0.11, "background": 2e-4, "infant": 0.003, "decline": 1.5}
@@ -54,12 +56,12 @@ def life_expectancy(law: Law, **changed: float) -> float:
     return float(0.002 * np.exp(-(np.cumsum(hazard) - hazard / 2) * 0.002).sum())
 
 
-def values(found: ShiftSqueeze, names: tuple[str, ...] = VALUES) -> np.ndarray:
+def values(found: ShiftSqueeze, names: tuple[str, ...] = ALL) -> np.ndarray:
     return np.stack([getattr(found, name).value for name in names])
 
 
 def errors(found: ShiftSqueeze) -> np.ndarray:
-    return np.stack([getattr(found, name).se for name in VALUES])
+    return np.stack([getattr(found, name).se for name in ALL])
 
 
 @pytest.mark.fast
@@ -148,6 +150,41 @@ def test_standard_errors_are_what_single_deaths_move(law: Law, overlap: float) -
 
 
 @pytest.mark.fast
+@pytest.mark.parametrize("settings", ["almanac-1", "almanac-1-population-2"])
+def test_the_difference_is_given_as_everywhere(settings: str) -> None:
+    this, that = population(MAKEHAM_INFANT, people=4e4, **OTHER), population(MAKEHAM_INFANT)
+    found = shift_squeeze(this, that, find(settings)).difference
+    expected = difference(INDICATORS["e0"], this, that, find(settings))
+    for name in ("value", "low", "high", "se"):
+        assert getattr(found, name) == getattr(expected, name)
+
+
+@pytest.mark.fast
+def test_an_error_of_the_population_moves_the_parts() -> None:
+    """Of very many people hardly any chance is left. 2 % more persons make every rate 2 % lower:
+    with the same slope b, the mode comes log(1.02) / b later and the background is 2 % less."""
+    this, that = (population(MAKEHAM_INFANT, people=1e14, **one) for one in (OTHER, {}))
+    found = shift_squeeze(this, that, find("almanac-1-population-2"))
+    squares = dict.fromkeys(("shift", "background"), 0.0)
+    for fewer, more in (((0.98, 1), (1.02, 1)), ((1, 0.98), (1, 1.02))):
+        ends = []
+        for times in (fewer, more):
+            sides = (
+                replace(one, exposure=one.exposure * by)
+                for one, by in zip((this, that), times, strict=True)
+            )
+            ends.append(shift_squeeze(*sides, PLAIN))
+        for name in squares:
+            moved = getattr(ends[0], name).value - getattr(ends[1], name).value
+            squares[name] += float(moved / 2) ** 2
+    for name, square in squares.items():
+        assert float(getattr(found, name).se) == pytest.approx(np.sqrt(square), rel=1e-6)
+    # d e0 / d mode is nearly 1
+    by_mode = np.hypot(0.02 / BASE["slope"], 0.02 / (BASE | OTHER)["slope"])
+    assert float(found.shift.se) == pytest.approx(by_mode, rel=0.1)
+
+
+@pytest.mark.fast
 def test_intervals_hold_what_they_say() -> None:
     """200 pairs of samples: the limits of each part hold the true one in 95 % within chance."""
     law, rng = MAKEHAM_INFANT, np.random.default_rng(5)
@@ -159,7 +196,7 @@ def test_intervals_hold_what_they_say() -> None:
         sides.append(Panel.of(GRID, deaths, np.broadcast_to(one.exposure, deaths.shape), sex="f"))
     found = shift_squeeze(*sides, PLAIN, law=law)
     assert np.isfinite(values(found)).mean() > 0.99
-    for name, expected in zip(VALUES, true, strict=True):
+    for name, expected in zip(ALL, true, strict=True):
         one = getattr(found, name)
         held = ((one.low < expected) & (expected < one.high))[np.isfinite(one.low)]
         assert held.mean() == pytest.approx(0.95, abs=0.05), name
@@ -237,7 +274,7 @@ def test_what_keeps_life_expectancy_from_being_read_keeps_the_parts_too() -> Non
     gap[4], none[-1] = np.nan, 0.0
     this = Panel.stack([replace(sound, deaths=deaths) for deaths in (gap, none)])
     found = shift_squeeze(this, Panel.stack([sound, sound]), PLAIN)
-    for name in VALUES:
+    for name in ALL:
         one = getattr(found, name)
         assert one.reason.tolist() == [Reason.NOT_AVAILABLE, Reason.NO_DEATHS_IN_OPEN_GROUP]
         assert np.isnan(one.value).all()
