@@ -262,6 +262,11 @@ def test_no_deaths_are_avoided_by_borrowing_a_rate() -> None:
     assert np.isfinite(own.deaths[-1])
     for name in ("deaths", "most"):
         np.testing.assert_array_equal(getattr(with_whole, name), getattr(own, name))
+    panel.deaths[-1] = 0  # and with nobody dead there, its ages below are searched all the same
+    borrowing = sensitivity.deaths_to_avoid(
+        indicator("e0"), run(panel, find("almanac-1-borrow")), 0.01
+    )
+    assert np.isfinite(borrowing.deaths[panel.grid.position(60) : -1]).all()
 
 
 @pytest.mark.fast
