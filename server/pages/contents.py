@@ -10,6 +10,7 @@ from server.results.loading import Holdings
 from server.results.questions import (
     DEFAULT_INDICATOR,
     ComparisonQuestion,
+    CurvesQuestion,
     PopulationYear,
     PopulationYearQuestion,
     TrendQuestion,
@@ -161,6 +162,7 @@ def _questions(
         population=address(collection, number, population),
         comparison=address(collection, number, comparison),
         trend=address(collection, number, trend),
+        curves=address(collection, number, CurvesQuestion(this, *asked)),
         who=names.population(this.sex, held.name(this.area)),
         area=held.name(this.area),
         this=this.period,

@@ -12,6 +12,7 @@ from engine.ages import Array
 from engine.chain import Chain, run
 from engine.panel import Panel
 from engine.settings import Settings, span
+from engine.smooth_bands import averaged
 from engine.stages.smoothing import LEAST_GROUPS, adult_counts, adult_groups
 from server.results.laws import Fitted, Limited, best, fitted, fitted_one, limited
 from server.results.loading import Beside, Found, Holdings, Loaded, holdings, load
@@ -167,23 +168,24 @@ def smooth(chain: Chain, level: float) -> Smooth | None:
     if groups.stop - groups.start < LEAST_GROUPS:
         return None
     counts = adult_counts(grid, chain.rates)
-    found = smoothing.fit(*counts)
-    if not np.isfinite(found.coefficients).all():
-        return None
+    tried = smoothing.fit_each(*counts)
     ages = np.arange(grid.starts[groups.start], grid.open_age + 1.0)
+    banded = _banded(tried, np.concatenate([counts.ages, ages]), level)
+    if not np.isfinite(banded).all():
+        return None
     return Smooth(
         groups,
-        _banded(found, counts.ages, level),
+        banded[:, : len(counts.ages)],
         _graduated(grid.widths[groups], chain.rates.mx[groups], counts.deaths),
         ages,
-        _banded(found, ages, level),
+        banded[:, len(counts.ages) :],
     )
 
 
-def _banded(found: smoothing.Fit, ages: Array, level: float) -> Array:
+def _banded(tried: smoothing.Fit, ages: Array, level: float) -> Array:
     """The curve and its limits, even on the scale of logarithms: [3, point]."""
-    half = float(ndtri((1 + level) / 2)) * found.standard_errors(ages)
-    logs = found.log_rates(ages)
+    found = averaged(tried, ages)
+    logs, half = found.log_rates, float(ndtri((1 + level) / 2)) * found.standard_errors
     return np.exp(np.stack([logs, logs - half, logs + half]))
 
 

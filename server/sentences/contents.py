@@ -7,6 +7,7 @@ from collections.abc import Sequence
 from engine.estimates import Estimate
 from engine.indicators import INDICATORS
 from server.sentences import names
+from server.sentences.curves import question as behind_the_rates
 from server.sentences.dates import day
 from server.sentences.movements import shown
 from server.sentences.pieces import Piece, Sentence, phrase
@@ -106,7 +107,15 @@ def standing(*, stands: bool, withdrawn: dt.date | None) -> str:
 
 
 def questions(
-    *, population: str, comparison: str, trend: str, who: str, area: str, this: str, that: str
+    *,
+    population: str,
+    comparison: str,
+    trend: str,
+    curves: str,
+    who: str,
+    area: str,
+    this: str,
+    that: str,
 ) -> tuple[Sentence, ...]:
     """What may be asked next, each with the address of a first answer."""
     return (
@@ -127,6 +136,12 @@ def questions(
             _("{question} For example life expectancy at birth in {area}, all years."),
             question=Piece(_("Which way is it going?"), trend),
             area=area,
+        ),
+        phrase(
+            _("{question} For example those of {who} in {year}."),
+            question=Piece(behind_the_rates(), curves),
+            who=who,
+            year=this,
         ),
     )
 

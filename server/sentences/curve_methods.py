@@ -49,7 +49,9 @@ def _made() -> tuple[tuple[str, str], ...]:
             _("Smooth curve"),
             _(
                 "P-spline: cubic splines with a penalty on roughness, fitted by Poisson likelihood"
-                " from age 10; the penalty is the one with the least BIC (Eilers & Marx 1996)."
+                " from age 10 (Eilers & Marx 1996), averaged over penalties by how likely each is"
+                " (Hoeting, Madigan, Raftery & Volinsky 1999). In trials with known rates a 95 %"
+                " band held 89 to 95 of a hundred."
             ),
         ),
         (

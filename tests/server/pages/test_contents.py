@@ -67,7 +67,7 @@ def test_a_comparison_is_proposed_ten_years_apart(isle: Session) -> None:
     assert [period for period, _label in choice.periods] == ["2014", "2013", "2002", "2001"]
     hrefs = [sentence[0].href for sentence in page(isle).questions]
     assert [href.split("?")[0].rsplit("/")[-1] for href in hrefs] == [
-        *("population-year", "comparison", "trend")
+        *("population-year", "comparison", "trend", "curves")
     ]
 
 
