@@ -31,11 +31,13 @@ def add(commands: Commands) -> None:
             "Prints figures with their intervals, the same numbers as the pages show. Without "
             "--area it takes the whole, without --sex women and men, without --from and --to all "
             "years, without --edition the newest that stands. INDICATOR is a key of the methods "
-            "page, such as e0, e65, median, edagger or H; e with an age works for any age."
+            "page, such as e0, edagger, H, smr or imr. Its ages may be others: e80, l70, 30q40, "
+            "yll70, e20_60; asr_by_ with area, sex and year weighs by the ages of those people."
         ),
         examples=(
             "ebbline figure e0 --collection quillmere",
             "ebbline figure e0 H --collection quillmere --area tollbay --sex m --from 2005",
+            "ebbline figure asr_esp2013 --collection quillmere --settings almanac-1-3-years",
             "ebbline figure e65 --collection quillmere --from 2023 --as csv",
         ),
     )

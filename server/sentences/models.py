@@ -58,8 +58,8 @@ def avoid(ages: str, deaths: float, there: float) -> Sentence:
     if deaths < 1:
         return phrase(
             _(
-                "Of the age groups with at least {least} deaths, the group {ages} takes fewest for a"
-                " month of life expectancy: one fewer of {there} is more than enough, all other"
+                "Of the age groups with at least {least} deaths, the group {ages} takes fewest for"
+                " a month of life expectancy: one fewer of {there} is more than enough, all other"
                 " ages as they are."
             ),
             least=whole(FEW_DEATHS),

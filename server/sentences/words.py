@@ -207,7 +207,8 @@ def comparing() -> tuple[tuple[str, str], ...]:
             _(
                 "Expected are the deaths there would have been if people of each age had died as "
                 "often as in the larger area. The ratio sets the deaths there were against them: "
-                "1.10 is a tenth more than expected. Two such ratios do not compare."
+                "1.10 is a tenth more than expected. Two such ratios do not compare with one "
+                "another."
             ),
         ),
         (
