@@ -6,17 +6,20 @@ import io
 import pytest
 from starlette.testclient import TestClient
 
-from engine.indicators import INDICATORS
+from engine.indicators import GROUPS, INDICATORS
+from engine.settings import SETTINGS
 
 
 def test_every_entry_can_be_linked_to(blank: TestClient) -> None:
     text = blank.get("/methods").text
-    for key in (*INDICATORS, "almanac-1", "almanac-1-kannisto"):
-        assert f'id="{key}"' in text
+    chapters = [group.key for group in GROUPS]
+    for key in (*chapters, *INDICATORS, *SETTINGS):
+        assert text.count(f'id="{key}"') == 1
+    for key in (*chapters, *SETTINGS):
         assert f'href="#{key}"' in text
 
 
-@pytest.mark.parametrize("table", ["indicators", "settings", "checks"])
+@pytest.mark.parametrize("table", ["indicators", "settings", "standards", "checks"])
 def test_each_list_is_a_file(blank: TestClient, table: str) -> None:
     rows = list(csv.DictReader(io.StringIO(blank.get(f"/methods.csv?table={table}").text)))
     in_json = blank.get("/methods.json").json()["figures"][table]["rows"]
@@ -36,7 +39,7 @@ def test_a_repeat_is_known_by_its_tag(blank: TestClient) -> None:
     ("address", "status", "words"),
     [
         ("/methods?of=e0", 400, "key “of”"),
-        ("/methods.csv?table=causes", 400, "it has indicators, settings, checks"),
+        ("/methods.csv?table=causes", 400, "it has indicators, settings, standards, checks"),
         ("/methods.pdf", 404, "there are .csv, .xlsx and .json"),
         ("/words?x=1", 400, "this page takes none"),
     ],
