@@ -127,7 +127,7 @@ def smoothed(settings: Settings) -> Told:
 
 
 def no_deaths(ages: Sequence[str], *, drawn: bool = False) -> Told:
-    """That nobody died at some ages; `drawn` where a smooth curve gives rates there all the same."""
+    """That nobody died at some ages; `drawn`: a smooth curve gives rates there all the same."""
     if not ages:
         return None
     if drawn:
