@@ -70,15 +70,23 @@ def drawn(
     Where the settings say that persons are counted wrongly, person-years are drawn too: in each
     table all ages are out by one and the same number of standard deviations.
     """
-    batch, error = deaths.shape[:-1], miscount(panel.grid, settings)
+    batch = deaths.shape[:-1]
     copies = panel.over(lambda array: np.broadcast_to(array, (*batch, array.shape[-1])))
-    counts = replace(copies, deaths=deaths)
-    if error.any():
-        out = normal_draws(streams, len(deaths), MISCOUNT)[..., None]
-        counts = replace(counts, exposure=panel.exposure * np.exp(error * out))
+    lived = persons(panel, streams, len(deaths), settings)
+    counts = replace(copies, deaths=deaths, exposure=lived)
     with np.errstate(all="ignore"):
         observed, redrawn = run(panel, settings), run(counts, settings)
         return {one.key: one.drawn(observed, redrawn) for one in indicators}
+
+
+def persons(panel: Panel, streams: NDArray[np.str_], draws: int, settings: Settings) -> Array:
+    """Person-years as they might be, were persons counted wrongly as the settings say: in each draw
+    all ages are out by one and the same number of standard deviations. [draw, ..., age]"""
+    error, shape = miscount(panel.grid, settings), (draws, *panel.deaths.shape)
+    if not error.any():
+        return np.broadcast_to(panel.exposure, shape)
+    out = normal_draws(streams, draws, MISCOUNT)[..., None]
+    return np.asarray(panel.exposure * np.exp(error * out))
 
 
 def flat(panel: Panel) -> Panel:

@@ -16,7 +16,8 @@ from engine.decomposition.straight import Line
 from engine.indicator import Indicator
 from engine.panel import Panel
 from engine.settings import Settings
-from engine.streams import pair_draws
+from engine.simulation import persons
+from engine.streams import PairDraws, pair_draws
 
 ROUNDING = (
     1e-7  # of the widest: what is left of an interval at an age that the number does not read
@@ -73,7 +74,13 @@ def contribution_limits(
         )
     in_both = np.zeros_like(this.deaths) if shared is None else shared
     drawn = pair_draws(this.deaths, that.deaths, in_both, streams, draws, "contributions")
-    return stepwise_limits(indicator, this, that, settings, drawn, groups)
+    lived = PairDraws(
+        *(
+            persons(panel, np.asarray(code), draws, settings)
+            for panel, code in zip((this, that), streams, strict=True)
+        )
+    )
+    return stepwise_limits(indicator, this, that, settings, drawn, lived, groups)
 
 
 def _smooth_limits(

@@ -27,18 +27,22 @@ def stepwise_limits(
     that: Panel,
     settings: Settings,
     drawn: PairDraws,
+    lived: PairDraws,
     groups: AgeGrid,
 ) -> Limits:
     """Bias-corrected percentiles of the stepwise contributions of drawn populations. Choices made
     on the observed ones, such as of a smoothing, hold.
 
-    Shape:   drawn deaths [draw, ..., age] -> [..., group].
+    Shape:   deaths drawn and person-years lived [draw, ..., age] -> [..., group].
     Missing: nan where the contribution is, or more than 1 % of the draws give none.
     """
     ours, theirs = (panel.over(lambda array: array[None]) for panel in (this, that))
     observed, found = run(passed_through(ours, theirs), settings), []
     for some in blocks(len(drawn.this), observed.rates.mx.size // len(this.grid)):
-        these = replace(ours, deaths=drawn.this[some]), replace(theirs, deaths=drawn.that[some])
+        these = (
+            replace(panel, deaths=deaths[some], exposure=years[some])
+            for panel, deaths, years in zip((ours, theirs), drawn, lived, strict=True)
+        )
         with np.errstate(all="ignore"):
             passed = run(passed_through(*these), settings)
             found.append(of_values(indicator.drawn(observed, passed)).by_age)

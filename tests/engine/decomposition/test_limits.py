@@ -348,6 +348,21 @@ def test_stepwise_contributions_have_simulated_limits(key: str) -> None:
 
 
 @pytest.mark.fast
+def test_simulated_limits_allow_for_persons_counted_wrongly() -> None:
+    """Where hardly any chance is left, the sum of the ages has the limits of the difference."""
+    pair, settings = large(PAIRS["Danish men 1974 to 2012"]), find("almanac-1-population-2")
+    one, median = AgeGrid((0,)), INDICATORS["median"]
+    streams = both(pair.this)
+    known, wrong = (
+        contribution_limits(median, pair.this, pair.that, chain, streams=streams, groups=one)
+        for chain in (find("almanac-1"), settings)
+    )
+    expected = difference(median, pair.this, pair.that, settings, streams=streams)
+    assert widths(known)[0] < 0.01 * widths(expected)
+    np.testing.assert_allclose(widths(wrong)[0], widths(expected), rtol=0.2)
+
+
+@pytest.mark.fast
 def test_choices_are_made_on_the_populations_passed_through_as_observed() -> None:
     """What is read off simulated counts is given the same steps of the observed ones."""
     this, that = gompertz_panel(level=2e-5), gompertz_panel(level=3e-5)
