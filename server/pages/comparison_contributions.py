@@ -35,7 +35,7 @@ def printed(key: str) -> Printed:
     if key == "H":
         return Printed(key, _("unevenness"), _("thousandths of H"), 1_000, 1)
     one = find(key)
-    label, unit = names.brief(names.inside(_(one.label))), one.unit
+    label, unit = names.inside(_(names.brief(one.label))), one.unit
     words = "" if unit.label == "ratio" else _(unit.label)
     return Printed(key, label, words, unit.scale, unit.decimals + 1)
 
@@ -176,17 +176,17 @@ def ages(found: Comparison) -> Table:
 
 
 def _columns(found: Comparison) -> Iterable[_Ages]:
-    own = len(found.grid)
     for one in shown(found):
         part, decimals = _part(found, one), one.decimals + 1
         by_age, left = (None, 0.0) if part is None else (part.by_age, part.remainder)
         head = Column(one.key, one.label, one.unit, decimals, signed=True)
         yield _Ages(head, one, by_age, left)
         if one.key == "e0":
-            beside = np.append(found.arriaga[: own - 1], found.arriaga[own - 1 :].sum())
-            words = _("by Arriaga’s formula")
-            head = Column("e0_arriaga", words, one.unit, decimals, signed=True)
-            yield _Ages(head, one, beside, 0.0)
+            for key, words, by_age in (
+                ("e0_arriaga", _("by Arriaga’s formula"), found.arriaga),
+                ("e0_pollard", _("by Pollard’s"), found.pollard),
+            ):
+                yield _Ages(Column(key, words, one.unit, decimals, signed=True), one, by_age, 0.0)
         if one.key == found.question.of and found.explained.path is not None and part is not None:
             words = _("{label}, through the years between", label=one.label)
             head = Column(f"{one.key}_path", words, one.unit, decimals, signed=True)

@@ -124,7 +124,7 @@ def _figure_row(found: Findings, key: str) -> Row:
 def called(key: str, grid: AgeGrid) -> str:
     """The name of a figure; that of a standard stands in its second line."""
     one = find(key)
-    return names.brief(_(one.label)) if used(one, grid) else _(one.label)
+    return _(names.brief(one.label)) if used(one, grid) else _(one.label)
 
 
 def what_it_counts(key: str, settings: Settings, grid: AgeGrid, whole: str = "") -> str:
@@ -238,20 +238,38 @@ def rises(found: Findings) -> Table:
 
 
 def gains(found: Findings) -> Table:
-    """Days of life expectancy for 1 % lower rates, by age group and per year of age in it."""
+    """Days of life expectancy for 1 % lower rates, by age group and per year of age in it; the
+    elasticities, and what survival of the group is worth."""
     grid = found.chain.table.grid
     days = DAYS * found.gain
     no_end = _("The group has no end.")
+    survival = np.append(found.by_survival, np.nan) / 1000
     rows = [
-        Row((label, number(gain), number(gain / width if np.isfinite(width) else np.nan, no_end)))
-        for label, gain, width in zip(grid.labels, days, grid.widths, strict=True)
+        Row(
+            (
+                label,
+                number(gain),
+                number(gain / width if np.isfinite(width) else np.nan, no_end),
+                number(part),
+                number(worth, no_end),
+            )
+        )
+        for label, gain, width, part, worth in zip(
+            grid.labels, days, grid.widths, found.elasticity, survival, strict=True
+        )
     ]
-    total = Row((_("all ages"), number(days.sum()), ""))
-    note = _("The last, open age group has no end, so that its days cannot be given by year.")
+    total = Row((_("all ages"), number(days.sum()), "", number(found.elasticity.sum()), ""))
+    note = _(
+        "The last, open age group has no end, so that its days cannot be given by year. The"
+        " elasticities are taken at fixed years lived by those who die, so that they add up to"
+        " −H. What survival is worth is summed over no ages."
+    )
     heads = (
         Column("age", _("age")),
         Column("days", _("days"), _("for the group"), 2),
         Column("days_per_year", _("days"), _("per year of age"), 3),
+        Column("elasticity", _("elasticity"), _("% for 1 % higher rates"), 4),
+        Column("survival", _("years"), _("if one more in 1,000 survived the group"), 4),
     )
     return Table(
         "gain",

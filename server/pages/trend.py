@@ -57,11 +57,11 @@ class TrendPage(Page):
 
 def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendPage:
     found = series(session, heading, question)
-    label = _(found.indicator.label)
+    label, brief = _(found.indicator.label), _(names.brief(found.indicator.label))
     courses = [course(found, line) for line in range(len(found.lines))]
     told = [one for one in courses if one is not None]
     area, sex = found.lines[0]
-    chart = trend_chart.draw(found, say.finding(label, told), frames.source(heading))
+    chart = trend_chart.draw(found, say.finding(brief, told), frames.source(heading))
     lead = [say.meaning(question.of)]
     if not found.indicator.needs.whole:  # of those no two compare
         if courses[0]:
@@ -84,7 +84,7 @@ def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendP
             settings=question.settings,
             notices=frames.notices(heading, question, found.moved, _headline(found)),
         ),
-        answer=say.answer(courses[0], label, names.population(sex, found.holdings.name(area))),
+        answer=say.answer(courses[0], brief, names.population(sex, found.holdings.name(area))),
         lead=tuple(sentence for sentence in lead if sentence),
         tables=(tables.years(found), tables.estimates(found)),
         charts=(chart,) if chart else (),

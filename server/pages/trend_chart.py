@@ -71,7 +71,7 @@ def _scale(low: float, high: float) -> tuple[float, tuple[float, ...]]:
 def _measured(found: Series) -> str:
     """What stands over the scale: the unit; of a ratio, which has none, what it is of."""
     one = found.indicator
-    return names.brief(_(one.label)) if one.unit.label == "ratio" else _(one.unit.label)
+    return _(names.brief(one.label)) if one.unit.label == "ratio" else _(one.unit.label)
 
 
 def _unit(found: Series) -> str:

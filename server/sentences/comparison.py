@@ -96,7 +96,7 @@ class Answer:
 
 def answer(pair: Pair, of: Answer, why_not: str) -> Sentence:
     """The page's first line. `why_not` says why there is no difference where there is none."""
-    label = names.brief(_(of.indicator.label))
+    label = _(names.brief(of.indicator.label))
     inside = names.inside(label)
     if of.kind is Movement.UNKNOWN:
         return phrase(

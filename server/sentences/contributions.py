@@ -53,7 +53,7 @@ def by_age(of: Answer, ages: str, part: float) -> str:
 
 def of_asked(of: Answer, ages: str, part: float) -> str:
     """The same for any other indicator."""
-    label = names.brief(names.inside(_(of.indicator.label)))
+    label = names.inside(_(names.brief(of.indicator.label)))
     if not of.clear or abs(part) > abs(float(of.difference.value)):
         return _("What each age adds to the difference in {label}", label=label)
     unit = of.indicator.unit

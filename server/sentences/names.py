@@ -61,7 +61,7 @@ def inside(label: str) -> str:
 
 
 def brief(label: str) -> str:
-    """A label without what it says in brackets, where a fuller one stands near.
+    """A label, not yet translated, without what it says in brackets: a fuller one stands near.
 
     >>> brief("Age-standardised death rate (Segi world standard population)")
     'Age-standardised death rate'

@@ -72,7 +72,7 @@ def answer(course: Course | None, label: str, who: str) -> Sentence:
             label=label,
             who=who,
         )
-    unit, label = course.indicator.unit, names.brief(label)
+    unit = course.indicator.unit
     if course.indicator.needs.whole:
         return _beside_the_whole(course)
     parts: dict[str, Piece | str] = {
@@ -126,7 +126,7 @@ def _beside_the_whole(course: Course) -> Sentence:
     unit, last = course.indicator.unit, course.at_last
     return phrase(
         _("{label} among {who} in {year}: {value} {interval}."),
-        label=names.brief(_(course.indicator.label)),
+        label=_(names.brief(course.indicator.label)),
         who=course.who,
         year=course.last,
         value=shown(last, unit),
@@ -195,7 +195,6 @@ def finding(label: str, courses: list[Course]) -> str:
     """The chart's title: where the lines end, as far as words can hold it."""
     if not courses:
         return label
-    label = names.brief(label)
     if len(courses) > 2:
         return _range(label, courses)
     first, *others = courses
