@@ -12,7 +12,7 @@ from engine.decomposition.stepwise import of_values, passed_through, stepwise
 from engine.indicator import Indicator
 from engine.panel import Panel
 from engine.settings import Settings
-from engine.simulation import corrected
+from engine.simulation import widest
 from engine.streams import PairDraws
 
 
@@ -48,5 +48,5 @@ def stepwise_limits(
             found.append(of_values(indicator.drawn(observed, passed)).by_age)
     redrawn = this.grid.regroup(np.concatenate(found), groups)
     value = this.grid.regroup(stepwise(indicator, this, that, settings).by_age, groups)
-    ends = corrected(redrawn.reshape(len(redrawn), -1), value.ravel(), settings.level)
+    ends = widest(redrawn.reshape(len(redrawn), -1), value.ravel(), settings.level)
     return Limits(*ends.reshape(2, *value.shape))

@@ -222,6 +222,12 @@ def _cautions(found: Comparison) -> tuple[Caution, ...]:
                 if few_deaths(indicators.INDICATORS["asr_esp2013"], side.panel.deaths)
             ),
             basis.law(found.settings, found.grid.open_age) if modelled else None,
+            *(
+                basis.borrowed(found.grid.open_age, _whole(found, side.of))
+                for side in sides
+                if side.borrowed
+            ),
+            basis.early_end(found.grid.open_age) if found.this.early_end else None,
             basis.smoothed(found.settings),
         ],
         below=[
@@ -241,6 +247,13 @@ def _cautions(found: Comparison) -> tuple[Caution, ...]:
             *basis.reading(found.settings),
         ],
     )
+
+
+def _whole(found: Comparison, of: PopulationYear) -> str:
+    """Name of the area that a side is part of; empty where there is none."""
+    held = found.holdings
+    parent = next((area.parent for area in held.areas if area.code == of.area), "")
+    return held.name(parent) if parent else ""
 
 
 def _why_not_parted(found: Comparison) -> str:

@@ -41,6 +41,8 @@ class Side:
     loaded: Loaded  # as delivered, on its own grid
     panel: Panel
     table: LifeTable
+    borrowed: bool  # its open group, in which nobody died, has the rate of its whole
+    early_end: bool  # its open group begins where closing it is a coarse guess
     estimates: dict[str, Estimate]
 
 
@@ -60,6 +62,7 @@ class Comparison:
     difference: dict[str, Estimate]
     explained: Explained
     arriaga: Array  # [age] of `grid`, for e0
+    pollard: Array
     moved: Moved | None
 
     @property
@@ -122,6 +125,7 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
             settings,
         ),
         arriaga=_on(grid, decomposition.arriaga(this.table, that.table)),
+        pollard=_on(grid, decomposition.pollard(this.table, that.table)),
         moved=moved(
             session, heading, asked, beside, lambda newer: _headline(question, newer, settings)
         ),
@@ -179,7 +183,8 @@ def _side(
 ) -> Side:
     panel = loaded.panel.regroup(grid)
     found = estimates(keys, panel, settings, stream(collection, of))
-    return Side(of, loaded, panel, run(panel, settings).table, found)
+    chain = run(panel, settings)
+    return Side(of, loaded, panel, chain.table, bool(chain.borrowed), chain.open_low, found)
 
 
 def _on(grid: AgeGrid, by_age: Array) -> Array:

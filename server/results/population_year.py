@@ -48,6 +48,8 @@ class Findings:
     before: Before | None  # None where the edition lacks the year before
     rises: ageing.Rises
     gain: Array  # years of life expectancy at birth for 1 % lower rates, by age of the table
+    elasticity: Array  # % of life expectancy for 1 % of each death rate, years lived as they are
+    by_survival: Array  # years of life expectancy per unit of the chance to survive each group
     avoidable: sensitivity.Avoidable  # deaths to avoid for a month of life expectancy at birth
     implied: models.Implied | None  # None where the area is part of no larger one
     moved: Moved | None
@@ -104,6 +106,8 @@ def population_year(
         before=_before(collection, question.of, previous, loaded, settings),
         rises=ageing.rises(panel, level=settings.level),
         gain=sensitivity.gain_per_percent(indicators.find("e0"), chain),
+        elasticity=sensitivity.elasticity(indicators.find("e0"), chain),
+        by_survival=sensitivity.by_survival(indicators.find("e0"), chain),
         avoidable=sensitivity.deaths_to_avoid(indicators.find("e0"), chain),
         implied=models.implied(panel, settings),
         moved=moved(

@@ -62,10 +62,12 @@ def reason(code: int, settings: Settings) -> str:
             " in."
         ),
         Reason.NO_WHOLE: _(
-            "The area is part of no larger one whose death rates are known at every age."
+            "The area is part of no larger one whose death rates are known at every age, in age"
+            " groups as fine."
         ),
         Reason.NO_STANDARD: _(
-            "The population whose ages it is weighted by is not held, or lacks an age."
+            "The population whose ages it is weighted by is not held, lacks an age, or has coarser"
+            " age groups."
         ),
         Reason.TOO_FEW_DEATHS: _("Too few people died for this figure to mean anything."),
         Reason.NOT_DECOMPOSED: _("No exact share of this difference belongs to an age."),
