@@ -175,7 +175,7 @@ INSIDE = {
     ),
     "keyfitz": (
         "In groups of five years, from the deaths of the table in the group and the two beside it "
-        "by Keyfitz's iteration (1966), kept between nothing and the width of the group. The first "
+        "by Keyfitz’s iteration (1966), kept between nothing and the width of the group. The first "
         "of these groups is taken at half its width, and the last, below the open age group, as if "
         "its death rate were constant. Groups of other widths are taken at half their width. "
         f"{BOUND}"
@@ -232,7 +232,7 @@ SETTINGS: dict[str, Settings] = {
         ),
         Settings(
             "almanac-2",
-            "Last ages borrowed where nobody died, five-year groups by Keyfitz's iteration",
+            "Last ages borrowed where nobody died, five-year groups by Keyfitz’s iteration",
             "one_over_m",
             borrow=True,
             inside="keyfitz",

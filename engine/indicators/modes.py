@@ -8,7 +8,7 @@ import numpy as np
 from engine.ages import Array
 from engine.chain import Chain
 from engine.estimates import Reason
-from engine.indicator import Indicator, Needs
+from engine.indicator import Indicator, Needs, Unit
 from engine.indicators.expectancy import YEARS
 from engine.smoothing import Curve, fit, fit_each, posterior_curves
 from engine.stages.smoothing import LEAST_GROUPS, adult_counts, adult_groups
@@ -153,7 +153,7 @@ FAMILY = (
         key="mode_raw",
         symbol="M raw",
         label="Most common age at death, adults: age group with most deaths",
-        unit=YEARS,
+        unit=Unit("years", "years", 1, 0),
         definition=(
             "The first age of the closed age group from 10 in which most people per year of age"
             " would die if the death rates of the year held for all their lives."
