@@ -18,10 +18,12 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.special import pdtr
 
+from engine import in_place, in_place_line
 from engine.ages import Array
 from engine.chain import run
 from engine.decomposition import Contributions
 from engine.decomposition import contributions as line_integral
+from engine.in_place import followed
 from engine.indicators import INDICATORS
 from engine.panel import Panel
 from engine.settings import Settings
@@ -33,8 +35,9 @@ from engine.tables import LifeTable
 Maker = Literal["compiled", "numpy"]
 
 NUMBERS = ("e0", "e65", "median", "mode_raw", "edagger", "H", "gini", "sd0")
-COLUMNS = ("mx", "ax", "qx", "lx", "dx", "Lx", "Tx", "ex")
+COLUMNS = in_place.COLUMNS
 CELLS = 65_536  # of a column in a block: half a megabyte
+ROWS = 24_576  # cells of a column in a block that is worked on in place
 MOST = 900.0  # mean up to which counts are drawn by the table of their distribution
 
 
@@ -76,9 +79,7 @@ def maker(settings: Settings | None = None) -> Maker:
     """Who does a job under these settings where nobody is named."""
     if importlib.util.find_spec("numba") is None:
         return "numpy"
-    from engine.compiled.rules import covered
-
-    return "compiled" if settings is None or covered(settings) else "numpy"
+    return "compiled" if settings is None or followed(settings) else "numpy"
 
 
 def version(by: Maker) -> str:
@@ -121,13 +122,32 @@ def fill(
 ) -> None:
     """Tables of populations in a row, by the numpy engine, into columns [row, age] and numbers
     [row] that are there already."""
-    for where in _blocks(len(rows.deaths), len(rows.grid)):
-        chain = run(rows[where], settings)
+    if not followed(settings):
+        return _through_the_chain(rows, settings, columns, numbers, np.arange(len(rows.deaths)))
+    size = max(1, min(ROWS // len(rows.grid), len(rows.deaths)))
+    room, odd = in_place.Rows.of(rows.grid, settings, size), []
+    for first in range(0, len(rows.deaths), size):
+        where = slice(first, first + size)
+        block = ({name: part[where] for name, part in kept.items()} for kept in (columns, numbers))
+        odd.append(~in_place.fill(rows[where], room, *block))
+    return _through_the_chain(rows, settings, columns, numbers, _places(odd))
+
+
+def _through_the_chain(
+    rows: Panel,
+    settings: Settings,
+    columns: dict[str, Array],
+    numbers: dict[str, Array],
+    which: NDArray[np.intp],
+) -> None:
+    for where in _blocks(len(which), len(rows.grid)):
+        places = which[where]
+        chain = run(rows[places], settings)
         for name, column in columns.items():
-            column[where] = getattr(chain.table, name)
+            column[places] = getattr(chain.table, name)
         with np.errstate(all="ignore"):
             for key, values in numbers.items():
-                values[where] = INDICATORS[key].value(chain)
+                values[places] = INDICATORS[key].value(chain)
 
 
 def simulated(
@@ -196,12 +216,29 @@ def contributions(
 
         line.explain(rules(this.grid, settings), lower, upper, by_age, difference)
     else:
-        for where in _blocks(len(difference), 16 * ages):
-            found = line_integral(INDICATORS["e0"], upper[where], lower[where], settings)
-            by_age[where], difference[where] = found.by_age, found.difference
+        _explain(lower, upper, settings, by_age, difference)
     remainder = difference - by_age.sum(axis=-1)
     parts = by_age.reshape(*batch, ages), remainder.reshape(batch), difference.reshape(batch)
     return Explained(Contributions(*parts), version(by))
+
+
+def _explain(
+    lower: Panel, upper: Panel, settings: Settings, by_age: Array, difference: Array
+) -> None:
+    """upper minus lower by numpy, panels [pair], into by_age [pair, age] and difference [pair]."""
+    which, ages = np.arange(len(difference)), len(lower.grid)
+    if followed(settings):
+        size = max(1, min(ROWS // ages, len(difference)))
+        room, odd = in_place_line.Room.of(lower.grid, settings, size), []
+        for first in range(0, len(difference), size):
+            part = slice(first, first + size)
+            pairs = lower[part], upper[part]
+            odd.append(~in_place_line.explain(*pairs, room, by_age[part], difference[part]))
+        which = _places(odd)
+    for where in _blocks(len(which), 16 * ages):
+        at = which[where]
+        found = line_integral(INDICATORS["e0"], upper[at], lower[at], settings)
+        by_age[at], difference[at] = found.by_age, found.difference
 
 
 def curves(
@@ -259,6 +296,11 @@ def _blocks(rows: int, each: int) -> Iterator[slice]:
     """Rows of so many cells each, a cache full at a time."""
     size = max(1, CELLS // each)
     return (slice(first, first + size) for first in range(0, rows, size))
+
+
+def _places(odd: list[NDArray[np.bool_]]) -> NDArray[np.intp]:
+    """Positions of the rows marked in one block after another."""
+    return np.flatnonzero(np.concatenate(odd)) if odd else np.arange(0)
 
 
 def _drawn(

@@ -2,5 +2,6 @@
 
 The only room that imports numba, entered through engine.bulk alone. Each kernel follows the numpy
 engine step by step and equals it (tests/engine/compiled). Loops over populations are what they are
-for. Only chains closed by 1 / m with half the width inside groups are followed (`rules.covered`).
+for. Only chains closed by 1 / m with half the width inside groups are followed
+(`engine.in_place.followed`).
 """

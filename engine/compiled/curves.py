@@ -44,7 +44,9 @@ def _fit(
     size, ages = rough.shape[1], first.size
     bands, inverse = np.empty((4, size)), np.empty((4, size))
     begin, now, right, fitted = np.empty(size), np.empty(size), np.empty(size), np.empty(ages)
+    logs = np.empty(ages)
     for row in range(deaths.shape[0]):
+        counted = _counted(deaths, exposure, row)
         _begin(deaths, exposure, row, first, local, rough, bands, begin)
         best = np.inf
         coefficients[row], penalty[row] = begin, PENALTIES[0]
@@ -64,6 +66,7 @@ def _fit(
                     PENALTIES[k],
                     now,
                     fitted,
+                    logs,
                     bands,
                     right,
                 )
@@ -77,11 +80,33 @@ def _fit(
                     break
             if not settled:
                 now[:] = np.nan
-            _normal(deaths, exposure, row, first, local, rough, weight, now, fitted, bands, right)
-            score = _criterion(deaths, exposure, row, fitted, bands, rough, weight, inverse)
+            _normal(
+                deaths, exposure, row, first, local, rough, weight, now, fitted, logs, bands, right
+            )
+            deviance = 2 * (counted + _unlike(deaths, row, fitted, logs))
+            score = _criterion(deviance, exposure, row, bands, rough, weight, inverse)
             if k == 0 or score < best:
                 best = np.inf if np.isnan(score) else score
                 coefficients[row], penalty[row] = now, PENALTIES[k]
+
+
+@fused
+def _counted(deaths: Array, exposure: Array, row: int) -> float:
+    """The part of half the deviance that no curve moves."""
+    total = 0.0
+    for x in range(deaths.shape[1]):
+        count = deaths[row, x]
+        total += count * np.log(count / exposure[row, x]) - count if count > 0 else 0.0 * count
+    return total
+
+
+@fused
+def _unlike(deaths: Array, row: int, fitted: Array, logs: Array) -> float:
+    """The part that the curve moves, from fitted deaths and log rates."""
+    total = 0.0
+    for x in range(fitted.size):
+        total += fitted[x] - deaths[row, x] * logs[x]
+    return total
 
 
 @fused
@@ -131,10 +156,11 @@ def _normal(
     penalty: float,
     now: Array,
     fitted: Array,
+    logs: Array,
     bands: Array,
     right: Array,
 ) -> None:
-    """The system of one step of Fisher scoring, and the deaths fitted."""
+    """The system of one step of Fisher scoring, and the deaths and log rates fitted."""
     for d in range(4):
         for k in range(now.size):
             bands[d, k] = penalty * rough[d, k]
@@ -143,6 +169,7 @@ def _normal(
         log_rate, place = 0.0, max(first[x], 0)  # said so, no index is checked for being negative
         for i in range(4):
             log_rate += local[x, i] * now[place + i]
+        logs[x] = log_rate
         fitted[x] = exposure[row, x] * np.exp(log_rate)
         working = deaths[row, x] - fitted[x] + fitted[x] * log_rate
         for i in range(4):
@@ -183,21 +210,17 @@ def _solve(bands: Array, right: Array) -> None:
 
 @fused
 def _criterion(
-    deaths: Array,
+    deviance: float,
     exposure: Array,
     row: int,
-    fitted: Array,
     bands: Array,
     rough: Array,
     penalty: float,
     inverse: Array,
 ) -> float:
     """Bayesian information criterion; the inverse within the bands from the factor."""
-    deviance, known, size = 0.0, 0, bands.shape[1]
-    for x in range(fitted.size):
-        count = deaths[row, x]
-        logs = np.log(count / fitted[x]) if count > 0 else 0.0
-        deviance += count * logs - count + fitted[x]
+    known, size = 0, bands.shape[1]
+    for x in range(exposure.shape[1]):
         known += exposure[row, x] > 0
     _factor(bands)
     removed = 0.0
@@ -209,4 +232,4 @@ def _criterion(
                 value -= bands[j, k] * inverse[abs(d - j), k + min(d, j)]
             inverse[d, k] = value
             removed += (1 if d == 0 else 2) * value * penalty * rough[d, k]
-    return float(2 * deviance + math.log(known) * (size - removed))
+    return float(deviance + math.log(known) * (size - removed))

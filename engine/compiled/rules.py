@@ -9,7 +9,6 @@ from engine.compiled.jit import compiled
 from engine.settings import Settings
 from engine.stages.separation import (
     CHILD,
-    CONSTANT_RATE,
     FIRST_YEAR,
     Pieces,
     has_child_group,
@@ -45,18 +44,6 @@ def rules(grid: AgeGrid, settings: Settings) -> Rules:
         np.where(adult, grid.widths, np.nan),
         int(adult.sum()),
         grid.position(65) if grid.has(65) else -1,
-    )
-
-
-def covered(settings: Settings) -> bool:
-    """Whether the kernels follow the chain of these settings."""
-    return (
-        settings.open_interval == "one_over_m"
-        and settings.smoothing == "none"
-        and settings.inside == "midpoint"
-        and not settings.borrow
-        and FIRST_YEAR[settings.first_year] is not CONSTANT_RATE
-        and CHILD[settings.child] is not CONSTANT_RATE
     )
 
 

@@ -130,10 +130,10 @@ def _early(
     infant rate, with the slope in that."""
     if rule is CONSTANT_RATE:
         return constant_rate(n, m)
-    return _by_infant_rate(rule, m0, weight, ratio)
+    return by_infant_rate(rule, m0, weight, ratio)
 
 
-def _by_infant_rate(rules: tuple[Pieces, Pieces], m0: Array, weight: Array, ratio: Array) -> Lived:
+def by_infant_rate(rules: tuple[Pieces, Pieces], m0: Array, weight: Array, ratio: Array) -> Lived:
     """Mean of the sexes' rules and its derivative in m0."""
     value, slope = np.zeros_like(m0), np.zeros_like(m0)
     for sex, pieces in enumerate(rules):

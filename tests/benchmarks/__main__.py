@@ -47,7 +47,11 @@ def main() -> None:
     results: list[Result] = []
     for goal in GOALS:
         for one in goal():
-            print(f"{one.what} / {one.over}: {one.ratio:.4g}, spread {one.spread:.2f}", flush=True)
+            print(
+                f"{one.what} / {one.over}: {one.ratio:.4g}, spread {one.spread:.2f}",
+                one.note,
+                flush=True,
+            )
             results.append(one)
     commit = subprocess.run(["git", "rev-parse", "--short", "HEAD"], capture_output=True, text=True)
     record: dict[str, object] = {

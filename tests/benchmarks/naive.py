@@ -89,10 +89,19 @@ def tables_by_groups(table: pd.DataFrame) -> pd.DataFrame:
 
 
 def expectancy(n: Array, m: Array) -> float:
-    """e0 with half the width everywhere: the least that the perturbation method can be charged."""
-    p = (1 - n / 2 * m[:-1]) / (1 + n / 2 * m[:-1])
-    reach = np.concatenate([[1.0], np.cumprod(p)])
-    return float((n / 2 * (reach[:-1] + reach[1:])).sum() + reach[-1] / m[-1])
+    """e0 of one table of women as an analyst writes it: the first year by Andreev and Kingkade,
+    half the width in the other closed groups, no more deaths than enter, 1 / m in the open one."""
+    a = n / 2
+    if m[0] < 0.01724:
+        a[0] = 0.14903 - 2.05527 * m[0]
+    else:
+        a[0] = 0.04667 + 3.88089 * m[0] if m[0] < 0.06891 else 0.31411
+    closed = m[:-1]
+    a = np.minimum(a, 1 / closed)
+    q = n * closed / (1 + (n - a) * closed)
+    reach = np.concatenate([[1.0], np.cumprod(1 - q)])
+    lived = n * reach[1:] + a * (reach[:-1] * q)
+    return float(lived.sum() + reach[-1] / m[-1])
 
 
 def by_perturbation(n: Array, start: Array, end: Array, points: int = 20) -> Array:
