@@ -2,6 +2,8 @@
 along the straight line between two columns of rates, as in engine.decomposition.straight.
 """
 
+from typing import NamedTuple
+
 import numpy as np
 
 from engine.ages import Array
@@ -10,6 +12,17 @@ from engine.compiled.rules import Rules, by_infant_rate
 from engine.decomposition.straight import BESIDE_JUMP, DOUBLINGS, NODES, WEIGHTS
 from engine.panel import Panel
 from engine.stages.rates import death_rates
+
+
+class Room(NamedTuple):
+    """For the table of one node, each [age]."""
+
+    ax: Array
+    own: Array  # slope of ax in the rate of its own group
+    qx: Array
+    ex: Array
+    per: Array
+    reach: Array  # survivors
 
 
 def explain(rules: Rules, lower: Panel, upper: Panel, by_age: Array, difference: Array) -> None:
@@ -22,7 +35,8 @@ def explain(rules: Rules, lower: Panel, upper: Panel, by_age: Array, difference:
         np.stack([getattr(one, name) for one in (lower, upper)])
         for name in ("infant_weight", "infant_ratio")
     )
-    _contributions(rules, start, end, weight, ratio, by_age, difference)
+    room = Room(*(np.empty(start.shape[1]) for _ in Room._fields))
+    _contributions(rules, start, end, weight, ratio, room, by_age, difference)
     by_age[~np.isfinite(difference)] = np.nan
 
 
@@ -33,6 +47,7 @@ def _contributions(
     end: Array,
     weight: Array,
     ratio: Array,
+    room: Room,
     by_age: Array,
     difference: Array,
 ) -> None:
@@ -41,10 +56,11 @@ def _contributions(
     ages = start.shape[1]
     cuts, toward = np.empty(10 + DOUBLINGS + 3 * ages), np.empty(10 + DOUBLINGS + 3 * ages)
     mx, mean = np.empty(ages), np.empty(ages)
-    room, mix = np.empty((6, ages)), np.empty((2, 1, 1, 2))
+    mix = np.empty((2, 1, 1, 2))
     for p in range(start.shape[0]):
         mean[:] = 0.0
-        size = _cuts(rules, start, end, weight, ratio, p, cuts, toward)
+        bent = _bends(rules, start, end, p, room)
+        size = _cuts(rules, start, end, weight, ratio, p, bent, cuts, toward)
         for piece in range(size + 1):
             low = cuts[piece - 1] if piece else 0.0
             high = cuts[piece] if piece < size else 1.0
@@ -53,7 +69,7 @@ def _contributions(
             for node in range(NODES.size):
                 t = low + (high - low) * ((1 + NODES[node]) / 2)
                 _at(start, end, weight, ratio, p, t, mx, mix)
-                _add_slopes(rules, mx, mix, (high - low) * (WEIGHTS[node] / 2), room, mean)
+                _add_slopes(rules, mx, mix, (high - low) * (WEIGHTS[node] / 2), bent, room, mean)
         for x in range(ages):
             by_age[p, x] = mean[x] * (end[p, x] - start[p, x])
         way = end[p, 0] - start[p, 0]
@@ -63,13 +79,24 @@ def _contributions(
                 _at(start, end, weight, ratio, p, cuts[piece], mx, mix)
                 m0 = mx[0]
                 mx[0] = m0 * (1 + BESIDE_JUMP)
-                above = _expectancy(rules, mx, mix, room)
+                above = _expectancy(rules, mx, mix, bent, room)
                 mx[0] = m0 * (1 - BESIDE_JUMP)
-                by_age[p, 0] += np.sign(way) * (above - _expectancy(rules, mx, mix, room))
+                by_age[p, 0] += np.sign(way) * (above - _expectancy(rules, mx, mix, bent, room))
         _at(start, end, weight, ratio, p, 1.0, mx, mix)
-        last = _expectancy(rules, mx, mix, room)
+        last = _expectancy(rules, mx, mix, bent, room)
         _at(start, end, weight, ratio, p, 0.0, mx, mix)
-        difference[p] = last - _expectancy(rules, mx, mix, room)
+        difference[p] = last - _expectancy(rules, mx, mix, bent, room)
+
+
+@fused
+def _bends(rules: Rules, start: Array, end: Array, p: int, room: Room) -> bool:
+    """Whether more would die than enter in any group anywhere on the line; where not, ax is half
+    the width all along but for the first years, and stands in `room` from here on."""
+    ax, own, n, full = room.ax, room.own, rules.widths, 0
+    for x in range(start.shape[1] - 1):
+        full += n[x] / 2 * max(start[p, x], end[p, x]) > 1
+        ax[x], own[x] = n[x] / 2, 0.0
+    return full > 0
 
 
 @fused
@@ -99,6 +126,7 @@ def _cuts(
     weight: Array,
     ratio: Array,
     p: int,
+    bent: bool,
     cuts: Array,
     toward: Array,
 ) -> int:
@@ -110,12 +138,15 @@ def _cuts(
                 continue
             for k in range(1, pieces.shape[1]):
                 size = _passes(pieces[sex, k, 0], start, end, ratio, p, sex, cuts, toward, size)
-    for x in range(top):
+    for x in range(top if bent else 0):
         step = end[p, x] - start[p, x]
         size = _cut((2 / rules.widths[x] - start[p, x]) / step, 0.0, cuts, toward, size)
-    step, least = end[p, top] - start[p, top], min(start[p, top], end[p, top])
-    for k in range(1, DOUBLINGS + 1):
-        size = _cut((least * 2**k - start[p, top]) / step, 0.0, cuts, toward, size)
+    step, level = end[p, top] - start[p, top], min(start[p, top], end[p, top])
+    for _ in range(DOUBLINGS):
+        level *= 2
+        if level >= start[p, top] and level >= end[p, top]:
+            break
+        size = _cut((level - start[p, top]) / step, 0.0, cuts, toward, size)
     return size
 
 
@@ -154,15 +185,18 @@ def _cut(t: float, sign: float, cuts: Array, toward: Array, size: int) -> int:
 
 
 @fused
-def _table(rules: Rules, mx: Array, mix: Array, room: Array) -> tuple[float, float, float]:
-    """Into room [ax, its slope, qx, ex, ...]; the slope of a(1-4) in m0, the years left at the top,
-    and e0."""
-    ax, own, qx, ex, per = room[0], room[1], room[2], room[3], room[4]
+def _table(
+    rules: Rules, mx: Array, mix: Array, bent: bool, room: Room
+) -> tuple[float, float, float]:
+    """Into room [ax, its slope, qx, ex, n / (1 + (n - ax) mx), survivors]; the slope of a(1-4) in
+    m0, the years left at the top, and e0."""
+    ax, own, qx, ex, per, reach = room
     n, top, child = rules.widths, mx.size - 1, 0.0
-    for x in range(top):
-        ax[x] = 1 / mx[x] if n[x] / 2 * mx[x] > 1 else n[x] / 2
-    for x in range(top):
-        own[x] = -1 / mx[x] ** 2 if n[x] / 2 * mx[x] > 1 else 0.0
+    if bent:
+        for x in range(top):
+            ax[x] = 1 / mx[x] if n[x] / 2 * mx[x] > 1 else n[x] / 2
+        for x in range(top):
+            own[x] = -1 / mx[x] ** 2 if n[x] / 2 * mx[x] > 1 else 0.0
     if rules.first.shape[1]:
         ax[0], own[0] = by_infant_rate(rules.first, mx[0], mix[0], mix[1], 0, 0)
     if rules.child.shape[1]:
@@ -172,42 +206,48 @@ def _table(rules: Rules, mx: Array, mix: Array, room: Array) -> tuple[float, flo
         if ax[x] * mx[x] > 1:
             ax[x], own[x] = 1 / mx[x], -1 / mx[x] ** 2
             child = 0.0 if x == 1 else child
+    for x in range(top):  # one result a loop: of more, not all could be worked on side by side
+        per[x] = n[x] / (1 + (n[x] - ax[x]) * mx[x])
     for x in range(top):
-        per[x] = 1 / (1 + (n[x] - ax[x]) * mx[x])
-    for x in range(top):
-        q = n[x] * mx[x] * per[x]
+        q = mx[x] * per[x]
         qx[x] = 1.0 if q > 1 else q
-    left = np.nan if mx[top] == 0 else 1 / mx[top]
     for x in range(top):
-        ex[x] = ax[x] * qx[x] + (1 - qx[x]) * n[x]
+        ex[x] = n[x] - (n[x] - ax[x]) * qx[x]
+    left = np.nan if mx[top] == 0 else 1 / mx[top]
     ex[top] = left
-    for x in range(top - 1, -1, -1):
-        ex[x] += (1 - qx[x]) * ex[x + 1]
-    return child, left, ex[0]
+    alive = 1.0
+    for x in range(top):  # up and down at once: each step of either waits for the one before it
+        y = top - 1 - x
+        reach[x] = alive
+        alive -= alive * qx[x]
+        left = ex[y] + (left - left * qx[y])
+        ex[y] = left
+    reach[top] = alive
+    return child, ex[top], ex[0]
 
 
 @fused
-def _expectancy(rules: Rules, mx: Array, mix: Array, room: Array) -> float:
-    return _table(rules, mx, mix, room)[2]
+def _expectancy(rules: Rules, mx: Array, mix: Array, bent: bool, room: Room) -> float:
+    return _table(rules, mx, mix, bent, room)[2]
 
 
 @fused
 def _add_slopes(
-    rules: Rules, mx: Array, mix: Array, share: float, room: Array, mean: Array
+    rules: Rules, mx: Array, mix: Array, share: float, bent: bool, room: Room, mean: Array
 ) -> None:
     """The gradient of e0 in mx, times a share, added to `mean`. With reach the survivors,
     d e0 / d q(x) = reach (a - n - e(x+n)) and d e0 / d a(x) = reach q."""
-    ax, own, qx, ex, per, reach = room[0], room[1], room[2], room[3], room[4], room[5]
-    child, left, _ = _table(rules, mx, mix, room)
-    n, top, survivors = rules.widths, mx.size - 1, share
+    child, left, _ = _table(rules, mx, mix, bent, room)
+    ax, own, qx, ex, per, reach = room
+    n, top, each = rules.widths, mx.size - 1, rules.per_year
     for x in range(top):
-        reach[x] = survivors
-        survivors *= 1 - qx[x]
+        per[x] *= per[x] * each[x]
     for x in range(top):
-        by_rate = reach[x] * (ax[x] - n[x] - ex[x + 1]) * n[x] * per[x] * per[x]
-        by_ax = reach[x] * qx[x] + by_rate * mx[x] * mx[x]
-        mean[x] += by_rate + by_ax * own[x]
+        per[x] *= share * reach[x] * (ax[x] - n[x] - ex[x + 1])
+    for x in range(top):
+        mean[x] += per[x]
+    for x in range(top if bent else min(2, top)):
+        mean[x] += (share * reach[x] * qx[x] + per[x] * mx[x] * mx[x]) * own[x]
     if child != 0:
-        by_rate = reach[1] * (ax[1] - n[1] - ex[2]) * n[1] * per[1] * per[1]
-        mean[0] += (reach[1] * qx[1] + by_rate * mx[1] * mx[1]) * child
-    mean[top] -= survivors * left * left
+        mean[0] += (share * reach[1] * qx[1] + per[1] * mx[1] * mx[1]) * child
+    mean[top] -= share * reach[top] * left * left
