@@ -1,9 +1,11 @@
 """The page of curves as data: sentence, table and picture say the same."""
 
 import math
+from dataclasses import replace
 
 import numpy as np
 import pytest
+from scipy.stats import chi2, norm
 
 from engine.ages import AgeGrid
 from server.charts.chart import Series
@@ -96,6 +98,73 @@ def test_squares_of_the_distances_add_up_to_the_deviance(isle: Session) -> None:
     assert np.sign(numbers(table, "more")) == pytest.approx(np.sign(far))
     more = numbers(table, "deaths") - numbers(table, "expected")
     assert numbers(table, "more") == pytest.approx(more, abs=1e-9)
+
+
+@pytest.mark.parametrize("of", ["north.f.2014", "single.m.2014", "isle.p.2014"])
+def test_the_verdict_is_that_of_chi_square(isle: Session, of: str) -> None:
+    built = page(isle, of)
+    far = numbers(built.table("residuals"), "residual")
+    laws = built.table("laws")
+    best = list(numbers(laws, "aic")).index(
+        np.nanmin(numbers(laws, "aic")[numbers(laws, "from") == 40])
+    )
+    free = numbers(laws, "free")[best]
+    misses = chi2.sf(np.sum(far**2), free) < 0.05
+    assert ("but misses more than chance would" in words(built)) == misses
+    assert ("farther from it than chance brings them" in words(built)) == misses
+    assert f"seldom goes above {chi2.isf(0.05, free):.1f}." in words(built)
+    each = norm.ppf((1 + 0.95 ** (1 / len(far))) / 2)
+    clear = np.abs(far).max() > each
+    finding = built.chart("residuals").finding
+    assert ("No age group lies farther" in finding) == (not clear)
+    ages = column(built.table("residuals"), "age")[int(np.abs(far).argmax())]
+    assert (f"age {ages}," in finding) == clear
+
+
+def test_one_group_far_from_the_law_is_named(isle: Session) -> None:
+    panel = gompertz_panel(people=2e6)
+    more = np.where(np.array(FIVE.starts) == 60, 1.3, 1.0)
+    edition(isle, {"spike.f.2014": replace(panel, deaths=more * panel.deaths)}, code="isle")
+    built = page(isle, "spike.f.2014", number=2)
+    assert built.chart("residuals").finding.startswith("Farthest from the law: age 60–64, with ")
+    assert "deaths more" in built.chart("residuals").finding
+    assert "but misses more than chance would" in words(built)
+
+
+def test_other_laws_are_told_by_how_much_more_their_criterion_is(isle: Session) -> None:
+    edition(isle, {"islet.f.2014": gompertz_panel(people=1e5, seed=3, accidents=0.0)})
+    built = page(isle, "islet.f.2014", number=2)
+    table = built.table("laws")
+    adult = {
+        str(row.cells[0]): float(row.cells[table.column("aic")])  # type: ignore[arg-type]
+        for row in table.rows
+        if row.cells[table.column("from")] == 40
+    }
+    least = min(adult.values())
+    near = {name: value - least for name, value in adult.items() if 0 < value - least < 2}
+    assert near
+    said = plain(built.laws)
+    for name, more in near.items():
+        assert f"{name} ({number(more, 1)} more)" in said
+
+
+@pytest.mark.parametrize("of", ["north.f.2014", "isle.p.2014"])
+def test_the_law_leaves_the_band_where_the_finding_says(isle: Session, of: str) -> None:
+    built = page(isle, of)
+    smooth, law = series(built, "smooth curve"), built.chart("rates").series[-1]
+    at = np.array(law.x)
+    low, high = (
+        np.interp(at, smooth.x, np.array(side, float)) for side in (smooth.low, smooth.high)
+    )
+    drawn = np.array(law.y, float)
+    outside = at[(drawn < low) | (drawn > high)]
+    finding = built.chart("rates").finding
+    assert ("keeps within the band" in finding) == (not outside.size)
+    assert not outside.size or f" ages {outside[0]:.0f}" in finding
+    law_column = numbers(built.table("curves"), "law")
+    known = np.isfinite(law_column)
+    middles = np.interp(FIVE.mids[: len(known)][known], at, np.log(drawn))
+    assert np.log(law_column[known]) == pytest.approx(middles, abs=0.06)
 
 
 def test_pictures_show_what_the_tables_hold(isle: Session) -> None:

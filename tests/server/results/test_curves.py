@@ -12,7 +12,7 @@ from engine.graduation import PENALTIES
 from engine.panel import Panel
 from engine.settings import find as named
 from server.results import curves
-from server.results.laws import Fitted, fitted, rivals
+from server.results.laws import Fitted, best, fitted, rivals
 from server.results.loading import NotInEdition
 from server.results.questions import CurvesQuestion, PopulationYear
 from server.store.connect import Session
@@ -299,3 +299,9 @@ def test_the_measure_of_misfit_is_rough_where_few_deaths_are_expected() -> None:
         one = laws_of(gompertz_panel(people=people))["gompertz"]
         few = np.mean(one.fit.exposure * one.fit.rates < 5)
         assert (few > 0.2) == rough == one.rough
+
+
+def test_a_law_of_all_ages_is_never_the_best_of_adults() -> None:
+    laws = laws_of(gompertz_panel(people=3e6, seed=1))
+    assert best((laws["makeham_infant"], laws["siler"])) is None
+    assert best((laws["siler"], laws["gompertz"])) is laws["gompertz"]

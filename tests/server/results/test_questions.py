@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 from server.results.questions import (
     BadValue,
     ComparisonQuestion,
+    CurvesQuestion,
     PopulationYear,
     PopulationYearQuestion,
     Question,
@@ -28,6 +29,7 @@ settings = st.sampled_from(("almanac-1", "almanac-1-kannisto"))
 figures = st.sampled_from(("released", "full"))
 questions = st.one_of(
     st.builds(PopulationYearQuestion, population_years, figures, settings),
+    st.builds(CurvesQuestion, population_years, figures, settings),
     st.builds(
         ComparisonQuestion, population_years, population_years, indicators, figures, settings
     ),
