@@ -4,6 +4,7 @@ import datetime as dt
 import io
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
+from dataclasses import replace
 from pathlib import Path
 
 import orjson
@@ -27,6 +28,7 @@ from server.config import Config
 from server.results.contents import ContentsQuestion
 from server.results.questions import (
     ComparisonQuestion,
+    CurvesQuestion,
     PopulationYear,
     PopulationYearQuestion,
     Question,
@@ -77,6 +79,7 @@ def sample(edition: int = EDITION) -> tuple[Question, ...]:
         _pair(("northlade", "m", REVISED), (WHOLE.code, "m", REVISED)),
         _trend("H", "almanac-1-gompertz"),
         _trend("mode_raw", "almanac-1"),
+        CurvesQuestion(PopulationYear("northlade", "m", REVISED)),
         ContentsQuestion(),
     )
 
@@ -89,6 +92,7 @@ def questions() -> Iterator[Question]:
     for area in AREAS:
         for sex in SEXES:
             yield _life(area, sex, REVISED)
+        yield CurvesQuestion(PopulationYear(area, "f", REVISED))
     for settings in CHAINS:
         for area in (WHOLE.code, "little-auk"):
             yield _life(area, "m", LAST, settings)
@@ -163,7 +167,9 @@ def revise(session: Session) -> int:
     """A further edition in which every count of every area and year is another, and one area has a
     new name; its number."""
     counts = {
-        code: type(one)(one.deaths * 2 + 1, one.population + 50, one.births + 7)
+        code: replace(
+            one, deaths=one.deaths * 2 + 1, population=one.population + 50, births=one.births + 7
+        )
         for code, one in counted(revised=True).items()
     }
     made = {

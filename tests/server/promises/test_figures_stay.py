@@ -26,7 +26,7 @@ pytestmark = pytest.mark.slow
 
 @pytest.mark.parametrize(
     ("view", "most_alike"),
-    [("population-year", 1), ("comparison", 1), ("trend", 3), ("contents", 3)],
+    [("population-year", 1), ("curves", 1), ("comparison", 1), ("trend", 3), ("contents", 3)],
 )
 def test_figures_of_every_address_stay_to_the_byte(
     copied: Callable[[], Path], view: str, most_alike: int
