@@ -71,7 +71,8 @@ def test_a_line_to_a_bound_or_past_a_doubling_is_not_ordinary(age: int, rate: fl
     at = max(x for x, start in enumerate(GRID.starts[:-1]) if start <= age)
     deaths = that.deaths.copy()
     if age == 75:
-        deaths[0, at] = rate * that.exposure[0, at]  # ax mx passes 1 at 2/5
+        two = slice(at - 1, at + 1)  # of two negative chances to survive the product is positive
+        deaths[0, two] = rate * that.exposure[0, two]  # ax mx passes 1 at 2/5
     else:
         deaths[0, -1] *= 2.05
     this = replace(that, deaths=deaths)
