@@ -174,7 +174,7 @@ def residuals(found: Curves, source: str) -> Chart | None:
     ends = (float(grid.starts[first]), float(grid.open_age))
     limits = [
         Series(
-            _("one in twenty by chance"),
+            _("1 in 20 by chance"),
             ends,
             (sign * reach, sign * reach),
             sex="p",
