@@ -1,6 +1,5 @@
 """Tables of a population-year page: another population at the highest ages, and fewer deaths."""
 
-
 from engine.estimates import Estimate
 from engine.indicators import find
 from server.exports.table import Column, Gap, Row, Table
