@@ -97,7 +97,11 @@ def test_the_whole_and_persons_are_sums(island: Session) -> None:
     asked = [PopulationYear(code, sex, "2012") for code in codes for sex in ("f", "m", "p")]
     held = load(island, quillmere.CODE, 2, asked)
     total = {
-        (one.area, one.sex): (loaded.panel.deaths.sum(), loaded.panel.exposure.sum(), loaded.births)
+        (one.area, one.sex): (
+            loaded.panel.deaths.sum(),
+            loaded.panel.exposure.sum(),
+            *loaded.panel.births,
+        )
         for one, loaded in held.items()
     }
     for sex in ("f", "m", "p"):

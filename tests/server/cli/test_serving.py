@@ -116,7 +116,7 @@ def test_a_database_or_language_that_is_not_to_be_had(
 def test_every_command_explains_itself(capsys: pytest.CaptureFixture[str]) -> None:
     (commands,) = (action for action in parser()._actions if action.choices)
     assert set(commands.choices) == {
-        *("demo", "serve", "database", "hand-in", "figure"),
+        *("demo", "serve", "database", "hand-in", "figure", "life-tables"),
         *("editions", "withdraw", "reinstate", "rebuild"),
     }
     for name in commands.choices:

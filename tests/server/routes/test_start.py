@@ -26,7 +26,7 @@ def test_with_a_collection_it_leads_to_the_list(reader: TestClient) -> None:
     [
         ("deaths", "area,area_name,year,sex,age,deaths,status"),
         ("population", "area,year,sex,age,population"),
-        ("births", "area,year,sex,births"),
+        ("births", "area,year,sex,births,stillbirths,neonatal_deaths"),
     ],
 )
 def test_templates_are_files_to_fill_in(blank: TestClient, name: str, heading: str) -> None:
