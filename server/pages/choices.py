@@ -3,8 +3,9 @@ their groups, and settings."""
 
 from dataclasses import dataclass
 
+from engine import settings as named
 from engine.indicators import GROUPS, find
-from engine.settings import SETTINGS
+from engine.settings import SETTINGS, span
 from server.results.loading import Holdings
 from server.results.questions import PopulationYear, PopulationYearQuestion
 from server.sentences import names
@@ -41,17 +42,23 @@ def choice(heading: Heading, held: Holdings, asked: PopulationYearQuestion) -> C
     return Choice(
         action=f"/c/{heading.collection.code}/{heading.edition.number}/{asked.view}",
         of=asked.of,
-        offer=offer(held),
+        offer=offer(held, named.find(asked.settings).years),
         figures=asked.figures,
         settings=asked.settings,
     )
 
 
-def offer(held: Holdings) -> Offer:
+def offer(held: Holdings, years: int = 1) -> Offer:
+    """What an edition holds; of years added up only those that have enough before them."""
+    spans = [(period, span(period, years)) for period in reversed(held.periods)]
     return Offer(
         areas=tuple((area.code, area.name or area.code) for area in held.areas),
         sexes=tuple((sex, names.sex(sex)) for sex in ("f", "m", "p") if sex in held.sexes),
-        periods=tuple((period, period) for period in reversed(held.periods)),
+        periods=tuple(
+            (period, names.years(added))
+            for period, added in spans
+            if set(added) <= set(held.periods)
+        ),
         settings=tuple((one.key, _(one.label)) for one in SETTINGS.values()),
     )
 

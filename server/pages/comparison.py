@@ -285,7 +285,7 @@ def _choice(found: Comparison) -> Choice:
     held, heading, question = found.holdings, found.heading, found.question
     return Choice(
         action=f"/c/{heading.collection.code}/{heading.edition.number}/{question.view}",
-        offer=offer(held),
+        offer=offer(held, found.settings.years),
         this=question.this,
         that=question.that,
         of=question.of,

@@ -254,6 +254,13 @@ def test_links_lead_only_to_years_that_can_be_added_up(page: Page) -> None:
     assert "change" not in [head.key for head in short.table("figures").columns]
 
 
+def test_the_form_offers_only_years_that_can_be_added_up(page: Page) -> None:
+    pooled = page("north.f.2014", "almanac-1-3-years").choice.offer.periods
+    single = page("north.f.2014").choice.offer.periods
+    assert pooled[0] == ("2014", "2012–2014")
+    assert [value for value, _label in pooled] == [value for value, _label in single][:-2]
+
+
 def test_without_the_years_before_it_a_year_is_refused(page: Page) -> None:
     with pytest.raises(NotInEdition, match=r"add up 3 years.*up to north\.f\.2010"):
         page("north.f.2010", "almanac-1-3-years")
