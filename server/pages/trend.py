@@ -186,6 +186,7 @@ def _cautions(found: Series) -> tuple[Caution, ...]:
             basis.smoothed(found.settings),
             say.no_two(found.indicator),
             say.small(small),
+            say.few_deaths([_who(found, line) for line, few in enumerate(found.few_deaths) if few]),
             *_missing(found),
         ],
         below=(

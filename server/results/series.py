@@ -14,6 +14,7 @@ from engine.estimates import Estimate, Reason
 from engine.indicators import Indicator
 from engine.panel import Panel
 from engine.settings import Settings, span
+from engine.standardisation import few_deaths
 from server.results.estimating import stream
 from server.results.loading import (
     Beside,
@@ -64,6 +65,7 @@ class Series:
     earlier: Estimate  # [line]: the change up to the middle year
     later: Estimate  # [line]: the change from it on
     fewest: float  # person-years of the smallest population drawn
+    few_deaths: tuple[bool, ...]  # [line]: some year's standardised rate rests on few of them
     headline: PopulationYear  # the first line's newest figure, by which a newer edition is measured
     moved: Moved | None
 
@@ -111,6 +113,10 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
         change=changes[0],
         earlier=changes[1],
         later=changes[2],
+        few_deaths=tuple(
+            any(one is not None and few_deaths(indicator, one.panel.deaths) for one in row)
+            for row in _rows(found, len(periods))
+        ),
         fewest=min((float(one.panel.exposure.sum()) for one in found if one), default=np.nan),
         headline=headline,
         moved=moved(

@@ -4,6 +4,7 @@ from dataclasses import dataclass
 
 from engine.estimates import Estimate
 from engine.indicators import Indicator
+from engine.standardisation import FEW_DEATHS
 from server.sentences import names
 from server.sentences.basis import in_a_row
 from server.sentences.movements import (
@@ -277,6 +278,18 @@ def no_two(indicator: Indicator) -> tuple[str, str] | None:
         "Each value sets an area against the larger one it is part of, weighted by its own people"
         " of that year. Two of them, of areas or of years, do not compare with one another; a"
         " standardised death rate does."
+    )
+
+
+def few_deaths(lines: list[str]) -> tuple[str, str] | None:
+    """Lines of a standardised rate of which some year rests on few deaths."""
+    if not lines:
+        return None
+    return _("Few deaths"), _(
+        "For {lines} the rate of some years rests on fewer than {bound} deaths: chance moves it a"
+        " good deal.",
+        lines=names.listed(lines, most=8),
+        bound=FEW_DEATHS,
     )
 
 

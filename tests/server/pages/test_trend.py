@@ -2,7 +2,9 @@
 
 from collections.abc import Callable
 from contextlib import AbstractContextManager
+from dataclasses import replace
 
+import numpy as np
 import pytest
 
 from server.exports.table import Gap, Table
@@ -198,3 +200,22 @@ def test_years_added_up_are_named_by_their_first_and_last(isle: Session) -> None
     assert "this=north.f.2014&that=north.f.2007" in built.further[0][1].href
     assert "settings=almanac-1-3-years" in built.further[0][1].href
     assert "Years added up" not in told(page(isle, areas=("north",)))
+
+
+@pytest.mark.parametrize(("deaths", "flagged"), [(10.0, True), (19.0, True), (20.0, False)])
+def test_rates_that_rest_on_few_deaths_are_flagged(
+    session: Session, deaths: float, flagged: bool
+) -> None:
+    some = gompertz_panel(people=2e4)
+    counted = np.zeros_like(some.deaths)
+    counted[17:19] = deaths / 2
+    few = replace(some, deaths=counted)
+    edition(session, {"islet.f.2013": some, "islet.f.2014": few})
+    question = TrendQuestion("asr_esp2013").completed(
+        areas=["islet"], sexes=("f",), periods=("2013", "2014")
+    )
+    built = build(session, heading(session, "isle", 1), question)
+    assert ("Few deaths" in told(built)) is flagged
+    assert not flagged or "For women of Islet the rate of some years" in told(built)["Few deaths"]
+    other = build(session, heading(session, "isle", 1), replace(question, of="cdr"))
+    assert "Few deaths" not in told(other)
