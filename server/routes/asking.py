@@ -4,7 +4,7 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from typing import Annotated, Any, Generic, TypeVar
 
-from fastapi import Depends, Request, Response
+from fastapi import APIRouter, Depends, Request, Response
 
 from server.accounts.viewer import LOCAL, Right, Viewer
 from server.pages.page import Page
@@ -14,7 +14,7 @@ from server.sentences.text import _
 from server.store import collections, editions
 from server.store.connect import Session
 from server.store.heading import Heading, heading
-from server.web.render import respond
+from server.web.render import READ, respond
 
 TWINS = ("csv", "xlsx", "json")
 
@@ -158,3 +158,32 @@ def answer(request: Request, asked: Asked[Asks], build: Callable[[], Page]) -> R
         form=asked.form,
         table=asked.table,
     )
+
+
+def pinned(
+    view: type[Asks],
+    build: Callable[[Session, Heading, Asks], Page],
+    *,
+    complete: Callable[[Session, Heading, Asks], Asks] | None = None,
+) -> APIRouter:
+    """The four addresses of a view: with and without an edition's number, the page and its twins.
+    `complete` as in `ask`."""
+    router = APIRouter(dependencies=[needs(Right.READ)])
+
+    def show(
+        request: Request,
+        session: SessionDep,
+        collection: str,
+        edition: int | None = None,
+        twin: str = "",
+    ) -> Response:
+        asked = ask(request, session, view, collection, edition, twin=twin, complete=complete)
+        return answer(request, asked, lambda: build(session, asked.heading, asked.question))
+
+    for place in (
+        f"/c/{{collection}}/{view.view}",
+        f"/c/{{collection}}/{{edition:int}}/{view.view}",
+    ):
+        router.add_api_route(place, show, methods=READ)
+        router.add_api_route(f"{place}.{{twin}}", show, methods=READ)
+    return router

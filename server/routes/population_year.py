@@ -1,30 +1,7 @@
 """How long do people live here? /c/{collection}/{edition}/population-year and its twins."""
 
-from fastapi import APIRouter, Request, Response
-
-from server.accounts.viewer import Right
 from server.pages import population_year
 from server.results.questions import PopulationYearQuestion
-from server.routes.asking import SessionDep, answer, ask, needs
-from server.web.render import READ
+from server.routes.asking import pinned
 
-router = APIRouter(dependencies=[needs(Right.READ)])
-
-VIEW = PopulationYearQuestion.view
-
-
-@router.api_route(f"/c/{{collection}}/{{edition:int}}/{VIEW}", methods=READ)
-@router.api_route(f"/c/{{collection}}/{{edition:int}}/{VIEW}.{{twin}}", methods=READ)
-@router.api_route(f"/c/{{collection}}/{VIEW}", methods=READ)
-@router.api_route(f"/c/{{collection}}/{VIEW}.{{twin}}", methods=READ)
-def show(
-    request: Request,
-    session: SessionDep,
-    collection: str,
-    edition: int | None = None,
-    twin: str = "",
-) -> Response:
-    asked = ask(request, session, PopulationYearQuestion, collection, edition, twin=twin)
-    return answer(
-        request, asked, lambda: population_year.build(session, asked.heading, asked.question)
-    )
+router = pinned(PopulationYearQuestion, population_year.build)
