@@ -145,7 +145,7 @@ def edition(
         status = "provisional" if period in provisional else "final"
         for measure, counts in (("deaths", panel.deaths), ("person_years", panel.exposure)):
             cells[Key(area, sex, period, measure)] = Vector(status, panel.grid, counts)
-        for measure, count in zip(records.MEASURES[2:], panel.births, strict=True):
+        for measure, count in zip(records.MEASURES[2:5], panel.births, strict=True):
             if np.isfinite(count):
                 all_ages = Vector(status, AgeGrid((0,)), np.array([count]))
                 cells[Key(area, sex, period, measure)] = all_ages

@@ -85,6 +85,11 @@ def add_basis(command: argparse.ArgumentParser) -> None:
         "--population-date", metavar=_("TEXT"), help=_("its date, as in '1 July of each year'")
     )
     group.add_argument("--source", metavar=_("TEXT"), help=_("where the counts come from"))
+    group.add_argument(
+        "--vintage",
+        metavar=_("TEXT"),
+        help=_("which estimate of the population, as in 'after the 2021 census'"),
+    )
 
 
 def handed(asked: argparse.Namespace, *, limit: int) -> list[Handed]:
@@ -161,6 +166,7 @@ def basis(asked: argparse.Namespace, before: Basis | None) -> Basis:
         "population": asked.population_is,
         "population_date": asked.population_date,
         "source": asked.source,
+        "vintage": asked.vintage,
     }
     options = {
         "people": "--people",
@@ -173,7 +179,7 @@ def basis(asked: argparse.Namespace, before: Basis | None) -> Basis:
         field.name: given[field.name] or (getattr(before, field.name) if before else "")
         for field in fields(Basis)
     }
-    missing = [options[name] for name, text in stated.items() if not text]
+    missing = [options[name] for name, text in stated.items() if not text and name in options]
     if missing:
         raise Declined(
             _(

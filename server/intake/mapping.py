@@ -2,6 +2,7 @@
 
 import json
 from dataclasses import asdict, dataclass, fields
+from typing import Any
 
 # fields of a mapping that name a column of the file
 COLUMNS = (
@@ -39,6 +40,24 @@ NUMBERS = tuple(dict.fromkeys(number for role in ROLES for number in numbers_of(
 
 
 @dataclass(frozen=True, slots=True)
+class Form:
+    """How the table stands in the file. Empty text: as the bytes themselves say."""
+
+    encoding: str = ""
+    delimiter: str = ""  # one sign
+    sheet: str = ""  # name of the sheet of a workbook
+    heading: int = 1  # row of the file in which the headings begin
+    heading_rows: int = 1  # rows that make up the headings, joined by a blank from above
+    decimal: str = "."  # or ","
+    thousands: str = ""  # sign between thousands
+    # fields whose values stand in headings: of age, sex, year, and number (which count it is)
+    across: tuple[str, ...] = ()
+    # a heading and its value in each of those fields, in their order
+    across_columns: tuple[tuple[str, ...], ...] = ()
+    across_number: str = ""  # the count in those cells, where no heading says it
+
+
+@dataclass(frozen=True, slots=True)
 class Mapping:
     """How one file is to be read. Empty text: not given."""
 
@@ -65,6 +84,12 @@ class Mapping:
     sex_codes: tuple[tuple[str, str], ...] = ()  # text in the file and f, m or p
     last_age_open: bool = False  # the last age of each series is open though it is not marked
     provisional_years: tuple[str, ...] = ()
+    # a number and what each of its figures is to be multiplied by: ("population", "1000")
+    units: tuple[tuple[str, str], ...] = ()
+    # of sex, age and area: what is done with counts that do not state it, "spread" or "left_out"
+    unstated: tuple[tuple[str, str], ...] = ()
+    most_unstated: int = 5  # per cent of a year's counts; above, spreading is refused
+    form: Form = Form()
 
     def to_json(self) -> str:
         """Canonical: the same mapping always gives the same text."""
@@ -76,24 +101,31 @@ class Mapping:
         stored = json.loads(text)
         if not isinstance(stored, dict):
             raise ValueError(f"a mapping is an object of named fields; found {text[:40]!r}")
-        known = {field.name: field.default for field in fields(cls)}
-        for name, value in stored.items():
-            if name not in known:
-                raise ValueError(
-                    f"{name!r} is no field of a mapping; the fields are {', '.join(known)}"
-                )
-            if isinstance(known[name], tuple):
-                if not isinstance(value, list):
-                    raise ValueError(f"mapping field {name} is {value!r}; expected a list")
-                stored[name] = tuple(
-                    tuple(part) if isinstance(part, list) else part for part in value
-                )
-            elif type(value) is not type(known[name]):
-                raise ValueError(
-                    f"mapping field {name} is {value!r}; expected {type(known[name]).__name__}"
-                )
-        return cls(**stored)
+        form = Form(**_checked(Form, stored.pop("form", {})))
+        return cls(**_checked(cls, stored), form=form)
 
     def column(self, field: str) -> str:
         """Name of the column mapped to this field; empty where there is none."""
         return str(getattr(self, field))
+
+
+def _checked(cls: type[Form] | type[Mapping], stored: Any) -> dict[str, Any]:
+    """Stored fields with lists made tuples. Raises: ValueError."""
+    if not isinstance(stored, dict):
+        raise ValueError(f"a {cls.__name__.casefold()} is an object; found {stored!r}")
+    known = {field.name: field.default for field in fields(cls)}
+    found = dict(stored)
+    for name, value in stored.items():
+        if name not in known:
+            raise ValueError(
+                f"{name!r} is no field of a mapping; the fields are {', '.join(known)}"
+            )
+        if isinstance(known[name], tuple):
+            if not isinstance(value, list):
+                raise ValueError(f"mapping field {name} is {value!r}; expected a list")
+            found[name] = tuple(tuple(part) if isinstance(part, list) else part for part in value)
+        elif type(value) is not type(known[name]):
+            raise ValueError(
+                f"mapping field {name} is {value!r}; expected {type(known[name]).__name__}"
+            )
+    return found

@@ -258,7 +258,7 @@ def _summed(cells: Cells, pool: _Pool) -> Loaded | None:
 
 def _single(cells: Cells, pool: _Pool, period: str) -> Loaded | None:
     deaths, years, *births = (
-        cells.get(Key(pool.area, pool.sex, period, measure)) for measure in MEASURES
+        cells.get(Key(pool.area, pool.sex, period, measure)) for measure in MEASURES[:5]
     )
     if deaths is None or years is None:
         return None

@@ -2,6 +2,7 @@
 
 import re
 from collections.abc import Iterable, Mapping
+from typing import Any
 
 from server.intake import mapping as intake
 from server.intake.recognising import fields_of
@@ -23,7 +24,7 @@ def mappings(form: Form, roles: Iterable[str]) -> dict[str, intake.Mapping]:
 
 
 def _mapping(form: Form, role: str) -> intake.Mapping:
-    columns = {field: form.get(f"{role}.{field}", "") for field in fields_of(role)}
+    columns: dict[str, Any] = {field: form.get(f"{role}.{field}", "") for field in fields_of(role)}
     codes = ((_text(form, f"code_{sex}"), sex) for sex in ("f", "m", "p"))
     return intake.Mapping(
         **columns,

@@ -42,9 +42,9 @@ def starts(grid: AgeGrid) -> str:
 def of_schedule(key: Key, vector: Vector) -> bytes:
     """Digest of one schedule, 32 bytes."""
     codes = ("schedule", key.area, key.sex, key.period, key.measure, key.cause)
-    return _digest(
-        *codes, vector.status, starts(vector.grid), tail=canonical(vector.values).tobytes()
-    )
+    marks = ("estimated",) if vector.estimated else ()
+    tail = canonical(vector.values).tobytes()
+    return _digest(*codes, vector.status, starts(vector.grid), *marks, tail=tail)
 
 
 def of_area(area: Area) -> bytes:
@@ -59,6 +59,7 @@ def of_basis(basis: Basis) -> bytes:
         basis.population,
         basis.population_date,
         basis.source,
+        *([basis.vintage] if basis.vintage else []),
     )
 
 

@@ -10,9 +10,10 @@ from sqlalchemy import ColumnElement, SQLColumnExpression, and_, func, insert, s
 from sqlalchemy.orm import Session, aliased
 
 from server.store import collections, digests, ranges, rows
+from server.store.base import LARGEST
 from server.store.errors import Missing, Refused, Stale
 from server.store.records import Basis, Change, Collection, Edition, Event
-from server.store.tables import LARGEST, AreaRange, BasisRange, EditionEvent, Schedule
+from server.store.tables import AreaRange, BasisRange, EditionEvent, Schedule
 from server.store.tables import Edition as EditionRow
 
 
@@ -185,6 +186,7 @@ COLUMNS = (
     BasisRange.population,
     BasisRange.population_date,
     BasisRange.source,
+    BasisRange.vintage,
     EditionEvent.id.label("event"),
     EditionEvent.what,
     EditionEvent.at.label("event_at"),
@@ -219,7 +221,14 @@ def _of_rows(found: list[Any]) -> Edition:
         digest=row.digest,
         upload=row.upload_id,
         replaces=row.replaces,
-        basis=Basis(row.people, row.dated_by, row.population, row.population_date, row.source),
+        basis=Basis(
+            row.people,
+            row.dated_by,
+            row.population,
+            row.population_date,
+            row.source,
+            row.vintage,
+        ),
         events=tuple(
             Event(event.what, event.event_at, event.event_by, event.event_note)
             for event in found

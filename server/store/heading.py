@@ -6,10 +6,11 @@ from sqlalchemy import and_, bindparam, select
 from sqlalchemy.orm import Session
 
 from server.store import collections, editions
+from server.store.base import LARGEST
 from server.store.errors import Missing
 from server.store.records import Collection as CollectionRecord
 from server.store.records import Edition as EditionRecord
-from server.store.tables import LARGEST, BasisRange, Collection, Edition, EditionEvent
+from server.store.tables import BasisRange, Collection, Edition, EditionEvent
 
 # made once: putting the statement together takes longer than running it
 _STATEMENT = (

@@ -14,11 +14,11 @@ from typing import Any
 from sqlalchemy import func, insert, literal, select, update
 from sqlalchemy.orm import Session
 
-from server.store.tables import AreaRange, BasisRange, Edition, Schedule
+from server.store.tables import AreaRange, BasisRange, BreakRange, Edition, Schedule
 
 STEP = 5000  # rows a statement: databases limit the values one statement may carry
 RowKey = tuple[str, ...]
-Content = type[Schedule] | type[AreaRange] | type[BasisRange]
+Content = type[Schedule] | type[AreaRange] | type[BasisRange] | type[BreakRange]
 
 
 @dataclass(frozen=True, slots=True)

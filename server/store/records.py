@@ -6,7 +6,15 @@ from dataclasses import dataclass
 
 from engine.ages import AgeGrid, Array
 
-MEASURES = ("deaths", "person_years", "births", "stillbirths", "neonatal_deaths")
+MEASURES = (
+    "deaths",
+    "person_years",
+    "births",
+    "stillbirths",
+    "neonatal_deaths",
+    "counted_deaths",  # as counted, where `deaths` holds shared-out ones too: chance is of these
+)
+BREAKS = ("boundary", "coding", "definition", "population", "shock")
 STATUSES = ("final", "provisional")
 
 
@@ -28,6 +36,7 @@ class Vector:
     status: str
     grid: AgeGrid
     values: Array  # [age]
+    estimated: bool = False  # split by shares, or worked out from rates
 
 
 @dataclass(frozen=True, slots=True)
@@ -39,6 +48,21 @@ class Basis:
     population: str  # "midyear" (mid-year population) or "person_years"
     population_date: str  # in words or ISO: "1 July of each year"
     source: str
+    vintage: str = ""  # which estimate of the population: "after the 2021 census"
+
+
+@dataclass(frozen=True, slots=True, order=True)
+class Break:
+    """A dated change that a trend must not cross; content of the edition. A shock year is no break,
+    it is left out where a course of years is fitted."""
+
+    area: str  # empty: every area
+    period: str  # the first of the new kind, or the year of shock
+    kind: str  # one of BREAKS
+    cause: str = ""  # of a coding break: the cause it moved; empty: all
+    note: str = ""  # presentation
+    ratio: float | None = None  # comparability: counts after over counts before
+    ratio_error: float | None = None  # standard error of the ratio
 
 
 @dataclass(frozen=True, slots=True)
@@ -100,6 +124,9 @@ class UploadFile:
     size: int
     sha256: str
     mapping: str  # JSON of intake.mapping.Mapping
+    erased: dt.datetime | None = None  # when its bytes were erased; digest and report stay
+    erased_by: str = ""
+    erased_why: str = ""
 
 
 @dataclass(frozen=True, slots=True)

@@ -32,6 +32,7 @@ def schedules(session: Session, added: Mapping[RowKey, bytes], change: Change) -
             **named,
             "period_start": start_of(named["period"]),
             "status": cell.status,
+            "estimated": cell.estimated,
             "grid_id": grids[digests.starts(cell.grid)],
             "vector": digests.canonical(cell.values).tobytes(),
             "digest": added[key],

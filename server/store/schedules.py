@@ -45,6 +45,7 @@ def load(
             Schedule.status,
             Grid.starts,
             Schedule.vector,
+            Schedule.estimated,
         )
         .join(Grid, Grid.id == Schedule.grid_id)
         .where(
@@ -54,7 +55,7 @@ def load(
         )
     ).all()
     return {
-        Key(*row[:5]): Vector(row.status, _grid(row.starts), unpacked(row.vector))
+        Key(*row[:5]): Vector(row.status, _grid(row.starts), unpacked(row.vector), row.estimated)
         for row in sorted(rows, key=lambda row: row[:5])
     }
 

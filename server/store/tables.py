@@ -4,68 +4,24 @@ import datetime as dt
 from typing import ClassVar
 
 from sqlalchemy import (
-    Boolean,
     CheckConstraint,
-    Date,
-    DateTime,
+    Double,
     ForeignKey,
     ForeignKeyConstraint,
     Index,
     LargeBinary,
-    MetaData,
     String,
     Text,
     UniqueConstraint,
     and_,
+    false,
     or_,
     text,
 )
-from sqlalchemy.engine import Dialect
-from sqlalchemy.ext.compiler import compiles
-from sqlalchemy.orm import DeclarativeBase, Mapped, mapped_column
+from sqlalchemy.orm import Mapped, mapped_column
 from sqlalchemy.sql import ColumnElement, SQLColumnExpression
-from sqlalchemy.types import TypeDecorator
 
-# SQLite's STRICT tables take only INT, INTEGER, REAL, TEXT, BLOB and ANY as types of a column
-_STRICT = {String: "TEXT", Text: "TEXT", Date: "TEXT", DateTime: "TEXT", Boolean: "INTEGER"}
-for _type, _name in _STRICT.items():
-    compiles(_type, "sqlite")(lambda _element, _compiler, _name=_name, **_kw: _name)
-
-# every constraint has a name, so that a later migration can drop it on either database
-NAMES = {
-    "ix": "ix_%(column_0_label)s",
-    "uq": "uq_%(table_name)s_%(column_0_name)s",
-    "ck": "ck_%(table_name)s_%(constraint_name)s",
-    "fk": "fk_%(table_name)s_%(column_0_name)s_%(referred_table_name)s",
-    "pk": "pk_%(table_name)s",
-}
-
-
-LARGEST = 2**31 - 1  # of an integer column; PostgreSQL refuses even to look for a larger number
-
-
-class Utc(TypeDecorator[dt.datetime]):
-    """A moment in UTC, aware on both databases (SQLite forgets the zone). Refuses a naive one."""
-
-    impl = DateTime(timezone=True)
-    cache_ok = True
-
-    def process_bind_param(self, value: dt.datetime | None, dialect: Dialect) -> dt.datetime | None:
-        if value is not None and value.tzinfo is None:
-            raise ValueError(f"{value} has no time zone; give a moment in UTC")
-        return value.astimezone(dt.UTC) if value else None
-
-    def process_result_value(
-        self, value: dt.datetime | None, dialect: Dialect
-    ) -> dt.datetime | None:
-        if value is None:
-            return None
-        return value.astimezone(dt.UTC) if value.tzinfo else value.replace(tzinfo=dt.UTC)
-
-
-class Base(DeclarativeBase):
-    metadata = MetaData(naming_convention=NAMES)
-    type_annotation_map: ClassVar = {dt.datetime: Utc()}
+from server.store.base import Base
 
 
 class Collection(Base):
@@ -109,7 +65,10 @@ class UploadFile(Base):
     size: Mapped[int]
     sha256: Mapped[str] = mapped_column(String(64))
     mapping: Mapped[str] = mapped_column(Text)
-    content: Mapped[bytes] = mapped_column(LargeBinary)
+    content: Mapped[bytes] = mapped_column(LargeBinary)  # empty once erased
+    erased: Mapped[dt.datetime | None]
+    erased_by: Mapped[str] = mapped_column(server_default="")
+    erased_why: Mapped[str] = mapped_column(Text, server_default="")
 
 
 class Edition(Base):
@@ -195,6 +154,7 @@ def _ranged(name: str, *key: str) -> tuple[CheckConstraint | Index, ...]:
     )
 
 
+_BREAK_KEY = ("area", "period", "kind", "cause")
 _SCHEDULE_KEY = ("area", "sex", "period", "measure", "cause")
 
 
@@ -220,6 +180,7 @@ class Schedule(Ranged, Base):
     status: Mapped[str] = mapped_column(String(16))
     grid_id: Mapped[int] = mapped_column(ForeignKey("grid.id"))
     vector: Mapped[bytes] = mapped_column(LargeBinary)
+    estimated: Mapped[bool] = mapped_column(server_default=false())
 
 
 class AreaRange(Ranged, Base):
@@ -256,6 +217,85 @@ class BasisRange(Ranged, Base):
     population: Mapped[str]
     population_date: Mapped[str]
     source: Mapped[str]
+    vintage: Mapped[str] = mapped_column(server_default="")
+
+
+class BreakRange(Ranged, Base):
+    """A dated change that a trend must not cross, or a year of shock."""
+
+    __tablename__ = "break"
+    __table_args__ = (
+        *_ranged("break", *_BREAK_KEY),
+        CheckConstraint(
+            "kind IN ('boundary', 'coding', 'definition', 'population', 'shock')", name="kind"
+        ),
+        {"sqlite_strict": True},
+    )
+    KEY: ClassVar = _BREAK_KEY
+
+    area: Mapped[str] = mapped_column(String(32))
+    period: Mapped[str] = mapped_column(String(32))
+    kind: Mapped[str] = mapped_column(String(16))
+    cause: Mapped[str] = mapped_column(String(32))
+    note: Mapped[str] = mapped_column(Text)
+    ratio: Mapped[float | None] = mapped_column(Double)
+    ratio_error: Mapped[float | None] = mapped_column(Double)
+
+
+class Policy(Base):
+    """What may be shown of a collection's small counts; a change is a new number."""
+
+    __tablename__ = "policy"
+    __table_args__ = {"sqlite_strict": True}
+
+    collection_id: Mapped[int] = mapped_column(ForeignKey("collection.id"), primary_key=True)
+    number: Mapped[int] = mapped_column(primary_key=True, autoincrement=False)
+    terms: Mapped[str] = mapped_column(Text)  # JSON
+    made: Mapped[dt.datetime]
+    by: Mapped[str]
+    note: Mapped[str] = mapped_column(Text)
+
+
+class Mask(Base):
+    """Which cells of an edition are withheld under a policy; made once, never updated."""
+
+    __tablename__ = "mask"
+    __table_args__ = (
+        ForeignKeyConstraint(
+            ["collection_id", "edition"], ["edition.collection_id", "edition.number"]
+        ),
+        ForeignKeyConstraint(
+            ["collection_id", "policy"], ["policy.collection_id", "policy.number"]
+        ),
+        {"sqlite_strict": True},
+    )
+
+    collection_id: Mapped[int] = mapped_column(primary_key=True)
+    edition: Mapped[int] = mapped_column(primary_key=True, autoincrement=False)
+    policy: Mapped[int] = mapped_column(primary_key=True, autoincrement=False)
+    digest: Mapped[str] = mapped_column(String(64))
+    content: Mapped[bytes] = mapped_column(LargeBinary)
+    made: Mapped[dt.datetime]
+
+
+class Statement(Base):
+    """What the analyst says of an edition's quality; the newest row holds, all are kept."""
+
+    __tablename__ = "statement"
+    __table_args__ = (
+        ForeignKeyConstraint(
+            ["collection_id", "edition"], ["edition.collection_id", "edition.number"]
+        ),
+        Index("ix_statement_of_edition", "collection_id", "edition", "id"),
+        {"sqlite_strict": True},
+    )
+
+    id: Mapped[int] = mapped_column(primary_key=True)
+    collection_id: Mapped[int]
+    edition: Mapped[int]
+    at: Mapped[dt.datetime]
+    by: Mapped[str]
+    answers: Mapped[str] = mapped_column(Text)  # JSON, by question
 
 
 class Job(Base):

@@ -11,9 +11,10 @@ from sqlalchemy.orm import Session
 from sqlalchemy.sql import ColumnElement
 
 from server.store import collections
+from server.store.base import LARGEST
 from server.store.errors import Missing, Refused
 from server.store.records import Basis, Upload, UploadFile
-from server.store.tables import LARGEST, Collection, Edition
+from server.store.tables import Collection, Edition
 from server.store.tables import Upload as UploadRow
 from server.store.tables import UploadFile as FileRow
 
@@ -178,6 +179,9 @@ def _read(session: Session, which: ColumnElement[bool]) -> tuple[Upload, ...]:
             FileRow.size,
             FileRow.sha256,
             FileRow.mapping,
+            FileRow.erased,
+            FileRow.erased_by,
+            FileRow.erased_why,
         ).where(FileRow.upload_id.in_(files))
     ):
         files[file.upload_id].append(UploadFile(*file[1:]))
