@@ -4,8 +4,9 @@ environment (EBBLINE_DATABASE_URL, or the SQLite file in EBBLINE_DATA)."""
 from alembic import context
 
 from server.config import Config
+from server.store.base import Base
 from server.store.connect import make_engine
-from server.store.tables import Base
+from server.store.tables import Edition  # noqa: F401  the tables enter the metadata
 
 
 def run(url: str) -> None:
