@@ -4,4 +4,5 @@ import sys
 
 from server.cli import main
 
-sys.exit(main())
+if __name__ == "__main__":  # a worker process imports this module too
+    sys.exit(main())

@@ -1,5 +1,6 @@
 """Wiring: the application from its settings, and the map from error class to status."""
 
+import datetime as dt
 from collections.abc import AsyncIterator, Callable
 from contextlib import asynccontextmanager
 from functools import partial
@@ -12,9 +13,11 @@ from starlette.types import ASGIApp, Receive, Scope, Send
 
 from seed_scenarios import quillmere
 from server.accounts.viewer import NotAllowed
+from server.actions.works import works
 from server.charts.figure import figure
 from server.config import Config
 from server.exports import csv, json, xlsx
+from server.jobs.executor import Executor, Inline
 from server.pages import error as error_page
 from server.pages.page import Page
 from server.pages.printed import printed
@@ -26,7 +29,8 @@ from server.routes import ROUTERS
 from server.routes.asking import Elsewhere, NoSuchPage
 from server.sentences.text import _, language, n_, speaking
 from server.store import errors
-from server.store.connect import make_engine, sessions
+from server.store.connect import Session, make_engine, sessions
+from server.store.jobs import JobBook
 from server.store.migrating import schema_state
 from server.web import problems, templating
 from server.web.build import build
@@ -57,8 +61,15 @@ FAILED = (
 )
 
 
-def create_app(config: Config) -> FastAPI:
-    """The application on the database of these settings."""
+def inline(book: JobBook, new_session: Callable[[], Session]) -> Executor:
+    """Long work is done at once, by whoever asks for it."""
+    return Inline(book, works(new_session))
+
+
+def create_app(
+    config: Config, executor: Callable[[JobBook, Callable[[], Session]], Executor] = inline
+) -> FastAPI:
+    """The application on the database of these settings; `executor` does what takes long."""
     engine = make_engine(config.url)
 
     @asynccontextmanager
@@ -77,6 +88,8 @@ def create_app(config: Config) -> FastAPI:
     app.state.config = config
     app.state.sessions = sessions(engine)
     app.state.demonstration = quillmere
+    app.state.book = JobBook(app.state.sessions, lambda: dt.datetime.now(dt.UTC))
+    app.state.executor = executor(app.state.book, app.state.sessions)
     app.state.web = _web()
     app.mount("/static", Static(build().static), name="static")
     _health(app, lambda: schema_state(engine))

@@ -13,6 +13,8 @@ VARIABLES: dict[str, tuple[Callable[[str], object], str]] = {
     "port": (int, "port to serve on"),
     "upload_limit": (int, "largest upload, bytes"),
     "language": (str, "language of the pages"),
+    "work_seconds": (int, "longest time that reading and checking an upload may take, seconds"),
+    "work_megabytes": (int, "most memory that reading and checking an upload may take, MB"),
 }
 
 
@@ -26,6 +28,8 @@ class Config:
     port: int = 8000
     upload_limit: int = 60_000_000
     language: str = "en"
+    work_seconds: int = 600
+    work_megabytes: int = 2_000
 
     @classmethod
     def from_environment(cls, environment: Mapping[str, str] = os.environ) -> "Config":

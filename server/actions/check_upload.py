@@ -3,14 +3,19 @@
 from server.intake.mapping import Mapping
 from server.intake.parsing import READER, Handed, parse
 from server.intake.report import Report
+from server.jobs.executor import Tell, untold
 from server.store import areas, editions, uploads
 from server.store.connect import Session, transaction
 from server.store.errors import Refused
 from server.store.records import Upload
 
+# what it is at, texts of the catalogue
+STAGES = ("opening the files", "reading and checking the rows", "writing the report")
 
-def check_upload(session: Session, *, upload_id: int) -> Report:
+
+def check_upload(session: Session, *, upload_id: int, tell: Tell = untold) -> Report:
     """All problems at once, and what the upload would become. Nothing becomes an edition here.
+    How far it is, it tells by its stages.
 
     Raises: Missing; Refused where a file has no mapping yet, or the upload is an edition already.
     """
@@ -18,7 +23,11 @@ def check_upload(session: Session, *, upload_id: int) -> Report:
     standing = editions.newest_standing(session, upload.collection)
     base = standing.number if standing else 0
     known = areas.listing(session, upload.collection, base) if base else ()
-    report = Report.of(parse(handed(session, upload), known))
+    tell(0, len(STAGES), STAGES[0])
+    files = handed(session, upload)
+    tell(1, len(STAGES), STAGES[1])
+    report = Report.of(parse(files, known))
+    tell(2, len(STAGES), STAGES[2])
     with transaction(session):
         uploads.set_report(
             session,
@@ -31,14 +40,8 @@ def check_upload(session: Session, *, upload_id: int) -> Report:
 
 
 def handed(session: Session, upload: Upload) -> list[Handed]:
-    """The files of an upload as they were handed in, with their mappings."""
-    for file in upload.files:
-        if not file.mapping:
-            raise Refused(
-                "The columns of {file} are not mapped yet. Say which column is which, then check "
-                "the upload.",
-                file=file.name,
-            )
+    """The files of an upload as they were handed in, with their mappings. Raises: Refused."""
+    _require_mapped(upload)
     return [
         Handed(
             file.role,
@@ -48,3 +51,24 @@ def handed(session: Session, upload: Upload) -> list[Handed]:
         )
         for file in upload.files
     ]
+
+
+def require_checkable(upload: Upload) -> None:
+    """Raises: Refused where it is an edition already, or a file has no mapping yet."""
+    if upload.edition is not None:
+        raise Refused(
+            "Upload {upload} is edition {edition} already.",
+            upload=upload.id,
+            edition=upload.edition,
+        )
+    _require_mapped(upload)
+
+
+def _require_mapped(upload: Upload) -> None:
+    for file in upload.files:
+        if not file.mapping:
+            raise Refused(
+                "The columns of {file} are not mapped yet. Say which column is which, then check "
+                "the upload.",
+                file=file.name,
+            )

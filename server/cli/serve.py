@@ -2,15 +2,21 @@
 
 import argparse
 import socket
+from functools import partial
 
 import uvicorn
 
+from server import worker
+from server.actions.works import KINDS
 from server.app import create_app
 from server.cli.opened import require_head
 from server.cli.options import Commands, add_command, add_port
 from server.cli.refusals import Declined
 from server.config import Config
+from server.jobs.executor import Executor
+from server.jobs.processes import Limits, Processes
 from server.sentences.text import _
+from server.store.jobs import JobBook
 
 # what an address names where the host is one of these
 LINKED = {"0.0.0.0": "127.0.0.1", "::": "[::1]", "::1": "[::1]"}
@@ -48,7 +54,7 @@ def serve(config: Config) -> int:
         flush=True,
     )
     uvicorn.run(
-        create_app(config),
+        create_app(config, partial(processes, config)),
         host=config.host,
         port=config.port,
         log_level="warning",
@@ -57,6 +63,17 @@ def serve(config: Config) -> int:
         timeout_graceful_shutdown=10,
     )
     return 0
+
+
+def processes(config: Config, book: JobBook, _new_session: object) -> Executor:
+    """Long work is done in processes of its own, within the limits of the settings."""
+    return Processes(
+        book,
+        KINDS,
+        partial(worker.begin, config.url, config.language),
+        Limits(config.work_seconds, config.work_megabytes),
+        preload=worker.__name__,
+    )
 
 
 def require_port(config: Config) -> None:

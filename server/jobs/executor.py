@@ -4,6 +4,12 @@ decides where and when the work runs."""
 from collections.abc import Callable, Mapping
 from typing import Any, Protocol, TypeVar
 
+# closing messages of a job, texts of the catalogue
+TOO_LARGE = (
+    "It needs more memory than this server allows. Hand in fewer years at a time, or raise "
+    "EBBLINE_WORK_MEGABYTES."
+)
+
 
 class Claimed(Protocol):
     """A job as its book hands it out."""
@@ -25,6 +31,8 @@ class Book(Protocol[Entry]):
     def claim(self, job_id: int | None = None, /) -> Entry | None: ...
     def progress(self, job: Entry, /, *, done: int, total: int, message: str) -> bool: ...
     def close(self, job: Entry, state: str, message: str, /) -> bool: ...
+    def holds(self, job: Entry, /) -> bool: ...
+    def abandon(self, message: str, /) -> None: ...
 
 
 class Cancelled(Exception):
@@ -35,6 +43,10 @@ class Tell(Protocol):
     """Tell how far the work is. Raises: Cancelled."""
 
     def __call__(self, done: int, total: int, message: str = "") -> None: ...
+
+
+def untold(done: int, total: int, message: str = "") -> None:
+    """Where nobody wants to know."""
 
 
 Work = Callable[[Mapping[str, Any], Tell], str]  # gives the closing message
@@ -73,7 +85,10 @@ def run(book: Book[Entry], job: Entry, work: Work, params: Mapping[str, Any]) ->
         message = work(params, tell)
     except Cancelled:
         return
+    except MemoryError:
+        book.close(job, "failed", TOO_LARGE)
     except Exception as error:  # whatever goes wrong in the work must not end the worker
-        book.close(job, "failed", f"{type(error).__name__}: {error}")
+        words = str(error) if hasattr(error, "text") else f"{type(error).__name__}: {error}"
+        book.close(job, "failed", words)
     else:
         book.close(job, "done", message)

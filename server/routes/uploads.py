@@ -1,11 +1,13 @@
 """From files to an edition: /uploads, /uploads/new, /uploads/{upload} and its steps."""
 
 import datetime as dt
+import json
+import time
 
 from fastapi import APIRouter, Request, Response
 
 from server.accounts.viewer import Right
-from server.actions.check_upload import check_upload
+from server.actions.check_upload import require_checkable
 from server.actions.commit_upload import commit_upload
 from server.actions.correct_upload import correct_upload
 from server.actions.create_collection import create_collection
@@ -14,19 +16,22 @@ from server.actions.map_upload import map_upload
 from server.actions.receive_upload import receive_upload
 from server.intake.mapping import ROLES
 from server.pages import upload as upload_page
-from server.pages import upload_new, upload_problems, upload_reading
+from server.pages import upload_checking, upload_new, upload_problems, upload_reading
 from server.pages import uploads as uploads_page
 from server.routes import plain
 from server.routes.asking import Elsewhere, SessionDep, ViewerDep, needs
 from server.routes.forms import FormDep, file, text
 from server.routes.reading_form import basis, mappings
 from server.store import uploads
+from server.store.errors import Missing
+from server.store.records import Job
 from server.web.problem import Refusal
-from server.web.render import READ, redirect, render
+from server.web.render import READ, asked_block, redirect, render
 
 router = APIRouter()
 MAY_READ = [needs(Right.READ)]
 MAY_UPLOAD = [needs(Right.UPLOAD)]
+A_MOMENT = 2.0  # seconds a reader waits for the checks without being told how far they are
 
 
 @router.api_route("/uploads", methods=READ, dependencies=MAY_READ)
@@ -83,7 +88,9 @@ def show_reading(request: Request, session: SessionDep, upload: int) -> Response
 
 
 @router.post("/uploads/{upload:int}/reading", dependencies=MAY_UPLOAD)
-def correct_reading(session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep) -> Response:
+def correct_reading(
+    request: Request, session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep
+) -> Response:
     """Fix how the files are read and what the counts are, and check them."""
     roles = [file.role for file in uploads.find(session, upload).files]
     texts = {key: value for key, value in form.items() if isinstance(value, str)}
@@ -95,13 +102,51 @@ def correct_reading(session: SessionDep, viewer: ViewerDep, upload: int, form: F
         by=viewer,
         now=dt.datetime.now(dt.UTC),
     )
-    return check(session, upload)
+    return check(request, session, upload)
 
 
 @router.post("/uploads/{upload:int}/check", dependencies=MAY_UPLOAD)
-def check(session: SessionDep, upload: int) -> Response:
-    check_upload(session, upload_id=upload)
-    return redirect(f"/uploads/{upload}/problems", status=303)
+def check(request: Request, session: SessionDep, upload: int) -> Response:
+    """Have the files read and checked. What takes longer than a moment is watched on a page."""
+    require_checkable(uploads.find(session, upload))
+    session.rollback()
+    jobs = request.app.state
+    job = jobs.executor.submit("check", {"upload": upload})
+    end = time.monotonic() + A_MOMENT
+    while (state := jobs.book.find(job).state) in ("queued", "running"):
+        if time.monotonic() > end:
+            break
+        time.sleep(0.02)
+    step = "problems" if state == "done" else f"checking?job={job}"
+    return redirect(f"/uploads/{upload}/{step}", status=303)
+
+
+@router.api_route("/uploads/{upload:int}/checking", methods=READ, dependencies=MAY_READ)
+def show_checking(request: Request, session: SessionDep, upload: int) -> Response:
+    job = _job(request, upload, plain.keys(request, "job")["job"])
+    if job.state != "done":
+        return render(request, upload_checking.build(session, upload, job))
+    found = f"/uploads/{upload}/problems"
+    if asked_block(request):  # the page asks for itself while it waits: have it go on
+        return Response(headers={"HX-Redirect": found})
+    return redirect(found)
+
+
+@router.post("/uploads/{upload:int}/checking/cancel", dependencies=MAY_UPLOAD)
+def cancel_checking(request: Request, upload: int, form: FormDep) -> Response:
+    job = _job(request, upload, text(form, "job"))
+    request.app.state.book.cancel(job.id)
+    return redirect(f"/uploads/{upload}/checking?job={job.id}", status=303)
+
+
+def _job(request: Request, upload: int, number: str) -> Job:
+    """The job that checks this upload. Raises: Missing."""
+    if not (number.isascii() and number.isdigit()):
+        raise Missing("job", number)
+    found: Job = request.app.state.book.find(int(number))
+    if json.loads(found.params) != {"upload": upload}:
+        raise Missing("job", number)
+    return found
 
 
 @router.api_route("/uploads/{upload:int}/problems", methods=READ, dependencies=MAY_READ)
@@ -136,7 +181,7 @@ def correct_file(
     )
     if new.basis is None:
         return redirect(f"/uploads/{new.id}/reading", status=303)
-    return check(session, new.id)
+    return check(request, session, new.id)
 
 
 @router.post("/uploads/{upload:int}/commit", dependencies=[needs(Right.COMMIT)])

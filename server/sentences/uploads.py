@@ -179,6 +179,34 @@ def why_not(errors: int, number: int) -> str:
     )
 
 
+def checking(state: str, message: str) -> Sentence:
+    """How far the reading and checking of an upload is, or how it ended."""
+    said = {
+        "queued": _("The files wait for their turn."),
+        "running": _("The files are being read: {stage}.", stage=_(message))
+        if message
+        else _("The files are being read."),
+        "cancelled": _("The reading was stopped. Nothing was changed."),
+        "failed": _("The files could not be read to the end. {why}", why=_(message)),
+        "done": _("The files have been read and checked."),
+    }
+    return phrase(said[state])
+
+
+def checking_further(state: str) -> tuple[Sentence, ...]:
+    """What may be done meanwhile."""
+    if state not in ("queued", "running"):
+        return ()
+    return (
+        phrase(
+            _(
+                "This page may be left; the work goes on. What was found will stand under the "
+                "upload."
+            )
+        ),
+    )
+
+
 def stale(checked: int, standing: int) -> Sentence:
     """Another edition stands than when the checks ran (0: none did, or does)."""
     return phrase(

@@ -72,6 +72,17 @@ class JobBook:
         """Done or failed; False as for `progress`."""
         return self._write(job, state=state, message=message, ended=self._clock())
 
+    def holds(self, job: Job) -> bool:
+        """Whether it still runs, under this attempt."""
+        found = self.find(job.id)
+        return found.state == "running" and found.attempt == job.attempt
+
+    def abandon(self, message: str) -> None:
+        """Close as failed what another server left queued or running."""
+        left = update(JobRow).where(JobRow.state.in_(("queued", "running")))
+        with self._sessions() as session, transaction(session):
+            session.execute(left.values(state="failed", message=message, ended=self._clock()))
+
     def cancel(self, job_id: int) -> Job:
         """Keep a queued job from starting, or a running one from writing on. One that has ended
         stays as it is. Raises: Missing."""
