@@ -1,8 +1,9 @@
 """Editions: immutable states of a collection, and the events that befall them."""
 
 import datetime as dt
+import json
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import asdict, dataclass
 from itertools import groupby
 from typing import Any, Literal
 
@@ -12,7 +13,16 @@ from sqlalchemy.orm import Session, aliased
 from server.store import collections, digests, ranges, rows
 from server.store.base import LARGEST
 from server.store.errors import Missing, Refused, Stale
-from server.store.records import Basis, Change, Collection, Edition, Event
+from server.store.records import (
+    ALL_OF_IT,
+    Basis,
+    Change,
+    Collection,
+    Edition,
+    Effect,
+    Event,
+    Taking,
+)
 from server.store.tables import AreaRange, BasisRange, EditionEvent, Schedule
 from server.store.tables import Edition as EditionRow
 
@@ -110,6 +120,8 @@ def write(session: Session, prepared: Prepared, *, by: str, note: str, at: dt.da
             note=note,
             digest=prepared.digest,
             upload_id=change.upload,
+            taking="" if change.taking == ALL_OF_IT else json.dumps(asdict(change.taking)),
+            effect=json.dumps(asdict(change.effect)) if change.effect else "",
         )
     )
     for table, part, added in (
@@ -181,6 +193,8 @@ COLUMNS = (
     EditionRow.digest,
     EditionRow.upload_id,
     EditionRow.replaces,
+    EditionRow.taking,
+    EditionRow.effect,
     BasisRange.people,
     BasisRange.dated_by,
     BasisRange.population,
@@ -234,7 +248,14 @@ def _of_rows(found: list[Any]) -> Edition:
             for event in found
             if event.event is not None
         ),
+        taking=_taking(row.taking) if row.taking else ALL_OF_IT,
+        effect=Effect(**json.loads(row.effect)) if row.effect else None,
     )
+
+
+def _taking(text: str) -> Taking:
+    stored = json.loads(text)
+    return Taking(tuple(stored["areas"]), tuple(stored["periods"]), stored["gives_way"])
 
 
 def _read(

@@ -85,6 +85,41 @@ class Event:
     note: str
 
 
+GIVES_WAY = ("cells", "handed", "years", "areas", "all")
+
+
+@dataclass(frozen=True, slots=True)
+class Taking:
+    """What of an upload becomes part of an edition, and what of its base gives way to it.
+
+    `gives_way`: "cells" the counts of the same area, sex, year and measure; "handed" everything of
+    an area and year taken; "years" everything of a year taken, of all areas; "areas" everything of
+    an area taken, of all years; "all" the whole base.
+    """
+
+    areas: tuple[str, ...] = ()  # codes; empty: all that were handed in
+    periods: tuple[str, ...] = ()  # empty: all that were handed in
+    gives_way: str = "cells"  # one of GIVES_WAY
+
+    def takes(self, area: str, period: str) -> bool:
+        return not (self.areas and area not in self.areas) and not (
+            self.periods and period not in self.periods
+        )
+
+
+ALL_OF_IT = Taking()
+
+
+@dataclass(frozen=True, slots=True)
+class Effect:
+    """How many schedules (one measure of an area, sex and year) an edition changed of its base."""
+
+    added: int = 0
+    changed: int = 0  # other numbers or age groups
+    restated: int = 0  # the same numbers under another status
+    dropped: int = 0
+
+
 @dataclass(frozen=True, slots=True)
 class Edition:
     """One immutable state of a collection."""
@@ -99,6 +134,8 @@ class Edition:
     basis: Basis
     events: tuple[Event, ...] = ()
     replaces: bool = False  # True: nothing of the base stayed
+    taking: Taking = ALL_OF_IT
+    effect: Effect | None = None  # None: made before this was counted
 
     @property
     def withdrawn(self) -> bool:
@@ -156,7 +193,9 @@ class Change:
     basis: Basis
     upload: int | None = None
     replace: bool = False  # True: nothing of the base stays
-    ended: frozenset[Key] = frozenset()  # totals of the base that no longer can be summed
+    ended: frozenset[Key] = frozenset()  # of the base: given way, or no longer to be summed
+    taking: Taking = ALL_OF_IT
+    effect: Effect | None = None
 
 
 @dataclass(frozen=True, slots=True)

@@ -89,6 +89,8 @@ class Edition(Base):
     note: Mapped[str] = mapped_column(Text)
     digest: Mapped[str] = mapped_column(String(64))
     upload_id: Mapped[int | None] = mapped_column(ForeignKey("upload.id"), unique=True)
+    taking: Mapped[str] = mapped_column(Text, server_default="")  # JSON; empty: all of the upload
+    effect: Mapped[str] = mapped_column(Text, server_default="")  # JSON, counts of what it changed
 
 
 class EditionEvent(Base):
