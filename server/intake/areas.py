@@ -2,10 +2,10 @@
 
 import hashlib
 import re
-import unicodedata
+
+from server.intake.folding import without_accents
 
 CODE = re.compile(r"[A-Za-z0-9_.-]{1,32}")
-_FOLDS = str.maketrans({"ß": "ss", "ø": "o", "đ": "d", "ł": "l", "æ": "ae", "œ": "oe", "þ": "th"})
 
 
 def is_code(text: str) -> bool:
@@ -19,7 +19,5 @@ def code_of(name: str) -> str:
     >>> code_of("Østre Mýrland (north)")
     'ostre-myrland-north'
     """
-    folded = unicodedata.normalize("NFKD", name.casefold().translate(_FOLDS))
-    letters = "".join(sign for sign in folded if not unicodedata.combining(sign))
-    code = "-".join(re.findall(r"[a-z0-9]+", letters))[:32].strip("-")
+    code = "-".join(re.findall(r"[a-z0-9]+", without_accents(name)))[:32].strip("-")
     return code or "area-" + hashlib.sha256(name.encode()).hexdigest()[:8]

@@ -11,7 +11,15 @@ from numpy.typing import NDArray
 
 from engine.panel import SEXES
 from server.intake.areas import code_of, is_code
-from server.intake.labels import ALL_AGES, Age, read_age, read_sex, read_status, read_year
+from server.intake.labels import (
+    AGE_NOT_STATED,
+    ALL_AGES,
+    Age,
+    read_age,
+    read_sex,
+    read_status,
+    read_year,
+)
 from server.intake.mapping import Mapping
 from server.intake.sheets import Labels, Sheet
 
@@ -152,7 +160,12 @@ def _ages(labels: Labels | None) -> list[Age]:
     unreadable = Age(UNREADABLE)
     if labels is None:
         return [Age(0, open=True)]
-    return labels.read(lambda text: read_age(text) or unreadable, unreadable)
+
+    def meaning(text: str) -> Age:
+        age = read_age(text)
+        return unreadable if age is None or age is AGE_NOT_STATED else age
+
+    return labels.read(meaning, unreadable)
 
 
 def _spread(read: list[int], labels: Labels | None, rows: int) -> Ints:
