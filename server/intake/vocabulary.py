@@ -25,7 +25,8 @@ TOTALS = (
 )
 ALL_AGES = (
     "all ages|total all ages|all age groups|every age|tous ages|tous les ages|toutes ages|"
-    "tous ages confondus|ages total|alle altersgruppen|alle alter|jedes alter|todas las edades|todas edades|"
+    "tous ages confondus|ages total|alle altersgruppen|alle alter|jedes alter|todas las edades|"
+    "todas edades|"
     "todas as idades|tutte le eta|alle leeftijden|alle aldre|alle aldersgrupper|alder i alt|"
     "alla aldrar|samtliga aldrar|wszystkie grupy wieku|wiek ogolem"
 )
@@ -38,7 +39,8 @@ NOT_STATED = (
     "non renseigne|non renseignee|indetermine|indeterminee|non reparti|non repartis|non repartie|"
     "unbekannt|ohne angabe|ohne angaben|keine angabe|keine angaben|nicht angegeben|"
     "nicht bekannt|unbestimmt|nicht zuordenbar|desconocido|desconocida|desconocidos|"
-    "no especificado|no especificada|sin especificar|no declarado|no declarada|no consta|no conocido|ignorado|"
+    "no especificado|no especificada|sin especificar|no declarado|no declarada|no consta|"
+    "no conocido|ignorado|"
     "ignorada|ignorados|no indicado|sin datos|desconhecido|desconhecida|nao especificado|"
     "nao especificada|nao declarado|nao declarada|sem declaracao|sem especificacao|nao informado|"
     "sconosciuto|sconosciuta|ignoto|ignota|non indicato|non indicata|non specificato|"
@@ -86,7 +88,8 @@ BELOW_END = (
 BELOW_END += "till under"
 UNDER = (
     "under|less than|below|younger than|up to but not including|unter|weniger als|moins de|"
-    "moins d'|- de|menos de|menor de|menores de|meno di|sotto|sotto i|jonger dan|onder|minder dan|yngre enn|"
+    "moins d'|- de|menos de|menor de|menores de|meno di|sotto|sotto i|jonger dan|onder|minder dan|"
+    "yngre enn|"
     "yngre end|yngre an|ponizej"
 )
 OVER = (
