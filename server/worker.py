@@ -15,7 +15,7 @@ from server.store.records import Job
 
 def begin(url: str, language: str, job: Job, megabytes: int) -> None:
     """Do a claimed job; how it ended is written down in the job table."""
-    _limit(megabytes)
+    limit(megabytes)
     engine = make_engine(url)
     new_session = sessions(engine)
     book = JobBook(new_session, lambda: dt.datetime.now(dt.UTC))
@@ -24,7 +24,7 @@ def begin(url: str, language: str, job: Job, megabytes: int) -> None:
     engine.dispose()
 
 
-def _limit(megabytes: int) -> None:
+def limit(megabytes: int) -> None:
     """Let this process grow by so much and no more; only Linux says what it holds already."""
     if sys.platform == "linux":
         import resource
