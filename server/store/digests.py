@@ -11,7 +11,7 @@ from functools import lru_cache
 import numpy as np
 
 from engine.ages import AgeGrid, Array
-from server.store.records import Area, Basis, Key, Vector
+from server.store.records import Area, Basis, Break, Key, Vector
 
 DECIMALS = 6  # of a count: nobody delivers a millionth of a person-year
 _ROUNDED_BELOW = 2.0**31  # above, a double has few decimals left and rounding twice might move it
@@ -61,6 +61,12 @@ def of_basis(basis: Basis) -> bytes:
         basis.source,
         *([basis.vintage] if basis.vintage else []),
     )
+
+
+def of_break(one: Break) -> bytes:
+    """Its note counts: a page that is pinned says why its line stops."""
+    numbers = ("" if number is None else repr(number) for number in (one.ratio, one.ratio_error))
+    return _digest("break", one.area, one.period, one.kind, one.cause, one.note, *numbers)
 
 
 def of_edition(parts: Iterable[bytes]) -> str:

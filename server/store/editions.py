@@ -23,7 +23,7 @@ from server.store.records import (
     Event,
     Taking,
 )
-from server.store.tables import AreaRange, BasisRange, EditionEvent, Schedule
+from server.store.tables import AreaRange, BasisRange, BreakRange, EditionEvent, Schedule
 from server.store.tables import Edition as EditionRow
 
 
@@ -37,12 +37,12 @@ class Prepared:
     schedules: ranges.Difference
     areas: ranges.Difference
     basis: ranges.Difference
+    breaks: ranges.Difference
 
     @property
     def digest(self) -> str:
-        return digests.of_edition(
-            (*self.schedules.digests, *self.areas.digests, *self.basis.digests)
-        )
+        parts = (self.schedules, self.areas, self.basis, self.breaks)
+        return digests.of_edition(one for part in parts for one in part.digests)
 
 
 def find(session: Session, collection: str, number: int) -> Edition | None:
@@ -97,8 +97,17 @@ def prepare(session: Session, change: Change) -> Prepared:
         collection,
         against,
         schedules=compared(Schedule, cells, frozenset(map(rows.of, change.ended))),
-        areas=compared(AreaRange, {(area.code,): digests.of_area(area) for area in change.areas}),
+        areas=compared(
+            AreaRange,
+            {(area.code,): digests.of_area(area) for area in change.areas},
+            frozenset((code,) for code in change.ended_areas),
+        ),
         basis=compared(BasisRange, {(): digests.of_basis(change.basis)}),
+        breaks=compared(
+            BreakRange,
+            {rows.of_break(one): digests.of_break(one) for one in change.breaks},
+            frozenset(map(rows.of_break, change.ended_breaks)),
+        ),
     )
 
 
@@ -128,6 +137,7 @@ def write(session: Session, prepared: Prepared, *, by: str, note: str, at: dt.da
         (Schedule, prepared.schedules, rows.schedules(session, prepared.schedules.add, change)),
         (AreaRange, prepared.areas, rows.areas(prepared.areas.add, change)),
         (BasisRange, prepared.basis, rows.basis(prepared.basis.add, change)),
+        (BreakRange, prepared.breaks, rows.breaks(prepared.breaks.add, change)),
     ):
         ranges.apply(session, table, collection.id, part, number, added)
     rows.name_areas(session, collection.id, change.areas)

@@ -60,7 +60,7 @@ class Break:
     period: str  # the first of the new kind, or the year of shock
     kind: str  # one of BREAKS
     cause: str = ""  # of a coding break: the cause it moved; empty: all
-    note: str = ""  # presentation
+    note: str = ""
     ratio: float | None = None  # comparability: counts after over counts before
     ratio_error: float | None = None  # standard error of the ratio
 

@@ -12,8 +12,8 @@ from sqlalchemy.orm import Session
 
 from server.store import digests
 from server.store.ranges import RowKey
-from server.store.records import Area, Change, Key
-from server.store.tables import AreaName, Grid, Schedule
+from server.store.records import Area, Break, Change, Key
+from server.store.tables import AreaName, BreakRange, Grid, Schedule
 
 Rows = Iterator[Mapping[str, Any]]
 
@@ -53,6 +53,17 @@ def areas(added: Mapping[RowKey, bytes], change: Change) -> Rows:
 def basis(added: Mapping[RowKey, bytes], change: Change) -> Rows:
     if digest := added.get(()):
         yield {**asdict(change.basis), "digest": digest}
+
+
+def breaks(added: Mapping[RowKey, bytes], change: Change) -> Rows:
+    for one in change.breaks:
+        if digest := added.get(of_break(one)):
+            yield {**asdict(one), "digest": digest}
+
+
+def of_break(one: Break) -> RowKey:
+    """The key in the order of the table's own."""
+    return tuple(getattr(one, name) for name in BreakRange.KEY)
 
 
 def name_areas(session: Session, collection_id: int, named: Sequence[Area]) -> None:

@@ -60,6 +60,23 @@ def load(
     }
 
 
+def held(session: Session, collection: str, number: int) -> dict[Key, AgeGrid]:
+    """Every schedule of an edition and its age groups, without the numbers. One statement."""
+    rows = session.execute(
+        select(
+            Schedule.area,
+            Schedule.sex,
+            Schedule.period,
+            Schedule.measure,
+            Schedule.cause,
+            Grid.starts,
+        )
+        .join(Grid, Grid.id == Schedule.grid_id)
+        .where(Schedule.collection_id == collections.id_of(collection), Schedule.holds_in(number))
+    ).all()
+    return {Key(*row[:5]): _grid(row.starts) for row in rows}
+
+
 def contents(session: Session, collection: str, number: int) -> Contents:
     """What an edition holds, without the numbers. One statement."""
     rows = session.execute(
