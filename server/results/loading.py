@@ -158,13 +158,37 @@ def load(
     Persons take their first-year rule from women and men where it holds both.
     """
     asked = tuple(dict.fromkeys(wanted))
+    chosen = needed(asked, beside)
+    return assembled(schedules.load(session, collection, number, chosen), asked, beside)
+
+
+def needed(wanted: Iterable[PopulationYear | Shared], beside: Beside = Beside()) -> Selection:
+    """The schedules that panels of these population-years are made of."""
+    pools = [_pool(one, beside.years) for one in wanted]
+    wholes = [_whole(one, beside) for one in wanted if isinstance(one, PopulationYear)]
+    pools += [_pool(one, beside.years) for one in wholes if one]
+    pools += [_pool(beside.standard, 1)] if beside.standard else []
+    sexes = {pool.sex for pool in pools}
+    if "p" in sexes:
+        sexes |= {"f", "m"}
+    return Selection(
+        areas=tuple(sorted({pool.area for pool in pools})),
+        sexes=tuple(sorted(sexes)),
+        periods=tuple(sorted({period for pool in pools for period in pool.periods})),
+        measures=MEASURES,
+    )
+
+
+def assembled(
+    cells: Cells, wanted: Iterable[PopulationYear | Shared], beside: Beside = Beside()
+) -> "Found":
+    """Panels of those population-years that these schedules hold; as `load`."""
+    asked = tuple(dict.fromkeys(wanted))
     wholes: dict[PopulationYear | Shared, PopulationYear | None] = {
         one: _whole(one, beside) for one in asked if isinstance(one, PopulationYear)
     }
     pools = {one: _pool(one, beside.years) for one in (*asked, *wholes.values()) if one}
     standard = _pool(beside.standard, 1) if beside.standard else None
-    everyone = [*pools.values(), *([standard] if standard else [])]
-    cells = _cells(session, collection, number, everyone)
     found = {one: _assembled(cells, pool) for one, pool in pools.items()}
     weights = _assembled(cells, standard) if standard else None
     return {
@@ -195,23 +219,6 @@ def _pool(one: "PopulationYear | Shared", years: int) -> _Pool:
 def _whole(one: PopulationYear, beside: Beside) -> PopulationYear | None:
     parent = beside.parents.get(one.area, "")
     return replace(one, area=parent) if parent else None
-
-
-def _cells(session: Session, collection: str, number: int, pools: Sequence[_Pool]) -> Cells:
-    sexes = {pool.sex for pool in pools}
-    if "p" in sexes:
-        sexes |= {"f", "m"}
-    return schedules.load(
-        session,
-        collection,
-        number,
-        Selection(
-            areas=tuple(sorted({pool.area for pool in pools})),
-            sexes=tuple(sorted(sexes)),
-            periods=tuple(sorted({period for pool in pools for period in pool.periods})),
-            measures=MEASURES,
-        ),
-    )
 
 
 def _with(own: Loaded, whole: Loaded | None, standard: Loaded | None) -> Loaded:

@@ -3,7 +3,7 @@
 import datetime as dt
 import json
 from collections.abc import Iterable
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, replace
 from itertools import groupby
 from typing import Any, Literal
 
@@ -15,6 +15,7 @@ from server.store.base import LARGEST
 from server.store.errors import Missing, Refused, Stale
 from server.store.records import (
     ALL_OF_IT,
+    STATUSES,
     Basis,
     Change,
     Collection,
@@ -43,6 +44,23 @@ class Prepared:
     def digest(self) -> str:
         parts = (self.schedules, self.areas, self.basis, self.breaks)
         return digests.of_edition(one for part in parts for one in part.digests)
+
+    @property
+    def effect(self) -> Effect:
+        """What the edition does to the schedules of its base."""
+        altered = self.schedules.altered
+        restated = sum(
+            altered.get(rows.of(key)) == digests.of_schedule(key, replace(cell, status=status))
+            for key, cell in self.change.cells.items()
+            for status in STATUSES
+            if status != cell.status
+        )
+        return Effect(
+            added=len(self.schedules.fresh),
+            changed=len(altered) - restated,
+            restated=restated,
+            dropped=len(self.schedules.dropped),
+        )
 
 
 def find(session: Session, collection: str, number: int) -> Edition | None:
@@ -130,7 +148,7 @@ def write(session: Session, prepared: Prepared, *, by: str, note: str, at: dt.da
             digest=prepared.digest,
             upload_id=change.upload,
             taking="" if change.taking == ALL_OF_IT else json.dumps(asdict(change.taking)),
-            effect=json.dumps(asdict(change.effect)) if change.effect else "",
+            effect=json.dumps(asdict(prepared.effect)),
         )
     )
     for table, part, added in (

@@ -29,6 +29,9 @@ class Difference:
     again: tuple[int, ...]  # ids of rows of the base, no longer open, that hold again
     add: Mapping[RowKey, bytes]  # what was handed in and is new: its key and digest
     digests: tuple[bytes, ...]  # of everything that holds
+    fresh: tuple[RowKey, ...]  # keys the base does not hold
+    altered: Mapping[RowKey, bytes]  # keys whose content is another: the base's digest
+    dropped: tuple[RowKey, ...]  # keys of the base that hold no longer
 
 
 def highest(session: Session, collection_id: int) -> int:
@@ -65,6 +68,13 @@ def difference(
         again=tuple(id_ for key, (id_, _) in kept.items() if key not in same and key not in handed),
         add={key: digest for key, digest in handed.items() if key not in same},
         digests=tuple(wanted.values()),
+        fresh=tuple(key for key in wanted if key not in base_rows),
+        altered={
+            key: digest
+            for key, (_, digest) in base_rows.items()
+            if wanted.get(key, digest) != digest
+        },
+        dropped=tuple(key for key in base_rows if key not in wanted),
     )
 
 

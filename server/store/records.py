@@ -193,12 +193,11 @@ class Change:
     basis: Basis
     upload: int | None = None
     replace: bool = False  # True: nothing of the base stays
-    ended: frozenset[Key] = frozenset()  # of the base: given way, or no longer to be summed
+    ended: frozenset[Key] = frozenset()  # of the base: sums no longer made, codes that ended
     taking: Taking = ALL_OF_IT
     ended_areas: frozenset[str] = frozenset()  # codes of the base that became others
     breaks: tuple[Break, ...] = ()  # handed in
     ended_breaks: tuple[Break, ...] = ()  # of the base
-    effect: Effect | None = None
 
 
 @dataclass(frozen=True, slots=True)

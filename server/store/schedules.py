@@ -51,11 +51,11 @@ def load(
         .where(
             Schedule.collection_id == collections.id_of(collection),
             Schedule.holds_in(number),
-            *_chosen(selection),
+            *chosen(selection),
         )
     ).all()
     return {
-        Key(*row[:5]): Vector(row.status, _grid(row.starts), unpacked(row.vector), row.estimated)
+        Key(*row[:5]): Vector(row.status, grid_of(row.starts), unpacked(row.vector), row.estimated)
         for row in sorted(rows, key=lambda row: row[:5])
     }
 
@@ -108,7 +108,8 @@ def unpacked(vector: bytes) -> Array:
     return np.frombuffer(vector, "<f8").astype(np.float64, copy=False)
 
 
-def _chosen(selection: Selection) -> list[ColumnElement[bool]]:
+def chosen(selection: Selection) -> list[ColumnElement[bool]]:
+    """The selection as conditions of a statement."""
     wanted: tuple[tuple[Any, tuple[str, ...] | None], ...] = (
         (Schedule.area, selection.areas),
         (Schedule.sex, selection.sexes),
@@ -119,4 +120,4 @@ def _chosen(selection: Selection) -> list[ColumnElement[bool]]:
     return [column.in_(codes) for column, codes in wanted if codes is not None]
 
 
-_grid = lru_cache(maxsize=256)(AgeGrid.parse)
+grid_of = lru_cache(maxsize=256)(AgeGrid.parse)
