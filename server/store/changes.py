@@ -66,7 +66,7 @@ def differing(session: Session, collection: str, then: int, now: int) -> dict[Ke
         key: (sides[0].get(key), sides[1].get(key)) for key in sorted({**sides[0], **sides[1]})
     }
     return {
-        key: (old and old.vector, new and new.vector)
+        key: (old.vector if old else None, new.vector if new else None)
         for key, (old, new) in pairs.items()
         if old is None or new is None or old.digest != new.digest
     }

@@ -74,7 +74,7 @@ def held(session: Session, collection: str, number: int) -> dict[Key, AgeGrid]:
         .join(Grid, Grid.id == Schedule.grid_id)
         .where(Schedule.collection_id == collections.id_of(collection), Schedule.holds_in(number))
     ).all()
-    return {Key(*row[:5]): _grid(row.starts) for row in rows}
+    return {Key(*row[:5]): grid_of(row.starts) for row in rows}
 
 
 def contents(session: Session, collection: str, number: int) -> Contents:
