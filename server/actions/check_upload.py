@@ -1,10 +1,11 @@
 """Read a mapped draft, run every check, and keep the report with the edition that stood then."""
 
+from server.actions.standing import standing
 from server.intake.mapping import Mapping
 from server.intake.parsing import READER, Handed, parse
 from server.intake.report import Report
 from server.jobs.executor import Tell, untold
-from server.store import areas, editions, uploads
+from server.store import editions, uploads
 from server.store.connect import Session, transaction
 from server.store.errors import Refused
 from server.store.records import Upload
@@ -20,9 +21,9 @@ def check_upload(session: Session, *, upload_id: int, tell: Tell = untold) -> Re
     Raises: Missing; Refused where a file has no mapping yet, or the upload is an edition already.
     """
     upload = uploads.find(session, upload_id)
-    standing = editions.newest_standing(session, upload.collection)
-    base = standing.number if standing else 0
-    known = areas.listing(session, upload.collection, base) if base else ()
+    newest = editions.newest_standing(session, upload.collection)
+    base = newest.number if newest else 0
+    known = standing(session, upload.collection, base)
     tell(0, len(STAGES), STAGES[0])
     files = handed(session, upload)
     tell(1, len(STAGES), STAGES[1])

@@ -3,10 +3,13 @@
 from server.intake.standing import Standing
 from server.store import areas, breaks, editions, schedules
 from server.store.connect import Session
+from server.store.records import Selection
+
+RATED = Selection(measures=("deaths", "person_years"))
 
 
 def standing(session: Session, collection: str, number: int) -> Standing:
-    """What edition `number` holds (0: nothing). Four statements."""
+    """What edition `number` holds (0: nothing). Five statements."""
     edition = editions.find(session, collection, number)
     if edition is None:
         return Standing()
@@ -15,4 +18,5 @@ def standing(session: Session, collection: str, number: int) -> Standing:
         schedules.held(session, collection, number),
         edition.basis,
         breaks.listing(session, collection, number),
+        schedules.load(session, collection, number, RATED),
     )

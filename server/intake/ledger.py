@@ -12,6 +12,7 @@ from server.intake.cells import Ints, parts_of, place_of, sexes_of
 from server.intake.mapping import WITHOUT_AGE
 from server.intake.problems import Value
 from server.intake.schedules import Block
+from server.intake.standing import Standing
 
 Line = tuple[Block, int]  # a block and which of its lines
 
@@ -49,6 +50,12 @@ class Ledger:
     unplaced: bool  # rows exist whose area, sex or year is not known, or files that were not read
     elsewhere: bool  # the edition that stands has parts of the whole that are not handed in here
     age_totals: tuple[AgeTotal, ...]
+    standing: Standing | None = None  # None: nothing is known of what stands
+
+    @cached_property
+    def past(self) -> tuple[Block, ...]:
+        """Deaths and person-years of the areas handed in, as the edition that stands has them."""
+        return self.standing.blocks(self.codes) if self.standing else ()
 
     def of(self, measure: str) -> tuple[Block, ...]:
         return tuple(block for block in self.blocks if block.measure == measure)

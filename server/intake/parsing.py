@@ -20,7 +20,7 @@ from server.intake.cells import (
     parts_of,
     whole_code,
 )
-from server.intake.checks import ages, columns, fields, files, plausibility, series, totals
+from server.intake.checks import OF_LEDGER, ages, columns, fields, files
 from server.intake.checks import areas as area_checks
 from server.intake.layout import layout
 from server.intake.ledger import AgeTotal, Ledger
@@ -28,6 +28,7 @@ from server.intake.mapping import ROLES, Mapping
 from server.intake.problems import Problem
 from server.intake.schedules import MEASURES, Block, blocks, ordered
 from server.intake.sheets import Sheet, load
+from server.intake.standing import Standing
 from server.store.records import Area, Key, Vector
 
 READER = "reader-3"  # changes whenever the same bytes and mapping would give other schedules
@@ -72,11 +73,11 @@ class _Sorted:
     age_totals: list[AgeTotal]
 
 
-def parse(handed: Sequence[Handed], standing: Sequence[Area] = ()) -> Parsed:
+def parse(handed: Sequence[Handed], standing: Standing | None = None) -> Parsed:
     """Read the files of one upload. Never raises on bad content: it collects all problems.
 
-    `standing` are the areas of the edition that stands: parts of the whole that are not handed in
-    again are not missed. The schedules do not depend on them.
+    `standing` is what the edition before holds, against which the upload is checked too; None:
+    that is not known, and not asked. The schedules do not depend on it.
     Raises: ValueError where a role is unknown or comes twice.
     """
     roles = [file.role for file in handed]
@@ -98,15 +99,20 @@ def parse(handed: Sequence[Handed], standing: Sequence[Area] = ()) -> Parsed:
     problems += clashes
     done = [_sorted(cells(sheet, codes)) for sheet in sheets]
     problems += [problem for part in done for problem in part.problems]
-    parts = {area.code for area in standing if area.parent and area.parent == _whole(handed)}
+    parts = {
+        area.code
+        for area in (standing.areas if standing else ())
+        if area.parent and area.parent == _whole(handed)
+    }
     ledger = _ledger(
         done,
         codes,
         areas,
         elsewhere=bool(parts - set(codes)),
         unplaced=len(sheets) < len(handed) or any(part.unplaced for part in done),
+        standing=standing,
     )
-    for check in (*series.CHECKS, *totals.CHECKS, *plausibility.CHECKS):
+    for check in OF_LEDGER:
         problems += check.problems(ledger)
     return Parsed(
         cells=_vectors(ledger.without_totals()),
@@ -211,6 +217,7 @@ def _ledger(
     *,
     elsewhere: bool,
     unplaced: bool,
+    standing: Standing | None,
 ) -> Ledger:
     whole = {area.parent for area in areas} - {""}
     return Ledger(
@@ -222,6 +229,7 @@ def _ledger(
         elsewhere=elsewhere,
         unplaced=unplaced,
         age_totals=tuple(total for part in done for total in part.age_totals),
+        standing=standing,
     )
 
 

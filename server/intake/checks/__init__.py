@@ -6,3 +6,6 @@ from server.intake.problems import Kind
 FAMILIES = (files, columns, areas, fields, ages, series, totals, plausibility)
 
 KINDS: dict[str, Kind] = {check.key: check for family in FAMILIES for check in family.CHECKS}
+
+# of all vectors of an upload together, in the order in which a report names what they find
+OF_LEDGER = (*series.CHECKS, *totals.CHECKS, *plausibility.CHECKS)

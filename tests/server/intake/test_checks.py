@@ -10,6 +10,7 @@ from server.intake.checks.check import LISTED
 from server.intake.mapping import Mapping
 from server.intake.parsing import Handed, parse
 from server.intake.problems import Problem
+from server.intake.standing import Standing
 from server.store.records import Area, Key
 from tests.server.intake.cases import CASES, ONE, SOUND, WOMEN, Case
 from tests.server.intake.tables import (
@@ -236,5 +237,5 @@ def test_parts_that_stand_in_the_edition_are_not_missed() -> None:
     isle = rows(("isle",), times=2)
     files = [counts(where(SOUND, area="north") + isle, whole="isle", delivered=("isle",))]
     assert {problem.key for problem in parse(files).problems} == {"whole_differs"}
-    standing = [Area("isle", "Isle"), Area("south", "South", parent="isle")]
+    standing = Standing((Area("isle", "Isle"), Area("south", "South", parent="isle")))
     assert parse(files, standing).problems == ()
