@@ -9,6 +9,7 @@ from typing import Any
 from sqlalchemy import insert, select, update
 from sqlalchemy.orm import Session, sessionmaker
 
+from server.store.base import LARGEST
 from server.store.connect import transaction
 from server.store.errors import Missing
 from server.store.records import Job
@@ -42,8 +43,9 @@ class JobBook:
 
     def find(self, job_id: int) -> Job:
         """Raises: Missing."""
+        which = JobRow.id == min(job_id, LARGEST)
         with self._sessions() as session:
-            row = session.execute(select(*_COLUMNS).where(JobRow.id == job_id)).one_or_none()
+            row = session.execute(select(*_COLUMNS).where(which)).one_or_none()
         if row is None:
             raise Missing("job", job_id)
         return Job(*row)
