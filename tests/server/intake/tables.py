@@ -30,21 +30,45 @@ def rows(
     sexes: Iterable[str] = "fm",
     times: int = 1,
 ) -> list[Row]:
-    """One row for each area, year, sex and age; row 2 of the file is the first."""
+    """One row for each area, year, sex and age; row 2 of the file is the first. No two areas, sexes
+    and years have the same counts; the isle with `times=2` is north and south together."""
     return [
         {
             "area": area,
             "year": year,
             "sex": sex,
             "age": age,
-            "deaths": times * (deaths + year % 3),
-            "population": times * (people + year % 5),
+            "deaths": times * (deaths + year - 2010 + 5 * (sex == "m")) + _own(area),
+            "population": times * (people + year - 2010 + 5 * (sex == "m")) + _own(area),
         }
         for area in areas
         for year in years
         for sex in sexes
         for age, (deaths, people) in AGES.items()
     ]
+
+
+def _own(area: str) -> int:
+    """What sets the counts of an area apart from those of others."""
+    return 10 * (area in ("south", "isle")) + 20 * (area not in ("north", "south", "isle"))
+
+
+def persons(table: list[Row]) -> list[Row]:
+    """Women and men of a table together."""
+    men = {(row["area"], row["year"], row["age"]): row for row in where(table, sex="m")}
+    together = []
+    names = ("deaths", "population")
+    for woman in where(table, sex="f"):
+        man = men[woman["area"], woman["year"], woman["age"]]
+        sums = {
+            name: _number(woman, name) + _number(man, name) for name in ("deaths", "population")
+        }
+        together.append({**woman, "sex": "persons", **sums})
+    return together
+
+
+def _number(row: Row, name: str) -> int:
+    return int(str(row[name]))
 
 
 def where(table: list[Row], **values: object) -> list[Row]:
