@@ -8,7 +8,7 @@ from server.cli.refusals import Declined
 from server.intake.mapping import COLUMNS, ROLES, Mapping
 from server.intake.parsing import Handed
 from server.intake.reading import read
-from server.intake.recognising import fields_of, recognise
+from server.intake.recognising.columns import fields_of, recognise
 from server.sentences.text import _
 from server.store.records import Basis
 

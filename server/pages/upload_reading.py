@@ -6,7 +6,7 @@ from typing import ClassVar
 from server.exports.table import Column, Row, Table
 from server.intake.mapping import Mapping
 from server.intake.reading import Reading, read
-from server.intake.recognising import Recognition, fields_of, recognise
+from server.intake.recognising.columns import Recognition, fields_of, recognise
 from server.pages.page import Frame, Page
 from server.pages.upload import locator
 from server.sentences import reading as say

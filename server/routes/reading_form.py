@@ -5,7 +5,7 @@ from collections.abc import Iterable, Mapping
 from typing import Any
 
 from server.intake import mapping as intake
-from server.intake.recognising import fields_of
+from server.intake.recognising.columns import fields_of
 from server.sentences.text import _
 from server.store.records import Basis
 from server.web.problem import Refusal

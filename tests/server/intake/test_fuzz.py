@@ -11,7 +11,7 @@ from server.intake.mapping import COLUMNS as FIELDS
 from server.intake.mapping import ROLES, Mapping
 from server.intake.parsing import Handed, parse
 from server.intake.reading import read
-from server.intake.recognising import recognise
+from server.intake.recognising.columns import recognise
 from server.intake.report import Report
 from server.intake.schedules import MEASURES
 from tests.server.intake.cases import SOUND

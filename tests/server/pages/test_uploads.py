@@ -12,7 +12,7 @@ from server.store.connect import Session
 from server.store.errors import Missing, Refused
 from tests.factories import BASIS, COLUMNS, NOON, checked_upload, counts_csv, stored_collection
 
-DEATHS = b"jahr,sex,age,area,deaths\n2001,f,0,north,3\n2001,f,1+,north,9\n"
+DEATHS = b"q1,sex,age,area,deaths\n2001,f,0,north,3\n2001,f,1+,north,9\n"
 
 
 @pytest.fixture
@@ -38,7 +38,7 @@ def test_columns_are_proposed_with_how_sure_that_is(salt: Session) -> None:
     fields = {field.name: field for field in file.fields}
     assert fields["deaths.sex"].chosen == "sex"
     assert fields["deaths.sex"].why == "sure: its heading says so"
-    assert fields["deaths.year"].chosen == "jahr"
+    assert fields["deaths.year"].chosen == "q1"
     assert fields["deaths.year"].why == "likely: its values look like it"
     assert (fields["deaths.status"].chosen, fields["deaths.status"].why) == ("", "")
     assert built.table("deaths").rows[0].cells == ("2001", "f", "0", "north", "3")

@@ -5,10 +5,10 @@ from dataclasses import fields, replace
 
 import pytest
 
-from server.intake import recognising
+from server.intake.recognising import columns
 from server.intake.mapping import COLUMNS, Mapping
 from server.intake.reading import read
-from server.intake.recognising import Recognised, recognise
+from server.intake.recognising.columns import Recognised, recognise
 
 
 def recognised(content: bytes, role: str = "counts") -> dict[str, Recognised]:
@@ -23,8 +23,8 @@ def test_a_usual_heading_is_enough() -> None:
     assert recognition.mapping == Mapping(
         year="Year", sex="Sex", age="Age group", deaths="Deaths", population="Person-years"
     )
-    assert recognition.columns[0] == Recognised("Year", "year", "sure", recognising.BY_HEADING)
-    assert recognition.columns[-1] == Recognised("Rate per 1000", "", "not used", recognising.RATE)
+    assert recognition.columns[0] == Recognised("Year", "year", "sure", columns.BY_HEADING)
+    assert recognition.columns[-1] == Recognised("Rate per 1000", "", "not used", columns.RATE)
 
 
 def test_values_tell_what_headings_do_not() -> None:
@@ -41,7 +41,7 @@ def test_values_tell_what_headings_do_not() -> None:
 def test_two_numbers_without_a_name_are_not_guessed() -> None:
     found = recognised(b"year,sex,age,a,b\n1974,f,0,3,4\n", "deaths")
     assert found["a"].field == found["b"].field == ""
-    assert found["a"].why == recognising.UNKNOWN
+    assert found["a"].why == columns.UNKNOWN
 
 
 def test_a_number_named_count_goes_before_others() -> None:
@@ -53,22 +53,22 @@ def test_a_number_named_count_goes_before_others() -> None:
 def test_a_second_column_for_the_same_is_not_used() -> None:
     found = recognised(b"year,period,sex,age,deaths\n1974,1974,f,0,3\n", "deaths")
     assert (found["year"].field, found["period"].field) == ("year", "")
-    assert found["period"].why == recognising.TAKEN
+    assert found["period"].why == columns.TAKEN
 
 
 def test_columns_of_another_kind_of_file_are_not_needed() -> None:
     found = recognised(b"year,sex,age,deaths,population\n1974,f,0,3,9\n", "population")
-    assert (found["deaths"].field, found["deaths"].why) == ("", recognising.OTHER_COUNT)
+    assert (found["deaths"].field, found["deaths"].why) == ("", columns.OTHER_COUNT)
 
 
 def test_a_count_that_says_what_it_is_is_not_taken_for_another() -> None:
     found = recognised(b"year,sex,age,person_years\n1974,f,0,34382.8\n", "deaths")["person_years"]
-    assert (found.field, found.why) == ("", recognising.OTHER_COUNT)
+    assert (found.field, found.why) == ("", columns.OTHER_COUNT)
 
 
 def test_births_have_no_age() -> None:
     found = recognised(b"year,sex,age,births\n1974,f,20-24,3\n", "births")
-    assert (found["age"].field, found["age"].why) == ("", recognising.NOT_NEEDED)
+    assert (found["age"].field, found["age"].why) == ("", columns.NOT_NEEDED)
 
 
 def test_a_region_that_is_no_code_is_a_name() -> None:

@@ -8,26 +8,10 @@ from server.intake.areas import is_code
 from server.intake.labels import read_age, read_sex, read_status, read_year
 from server.intake.mapping import COLUMNS, NUMBERS, ROLES, Mapping, numbers_of
 from server.intake.reading import Reading
-
-# headings as compared: lower case, every run of other signs than letters and digits one space
-HEADINGS = {
-    "year": "year|period|calendar year|year of death|time",
-    "sex": "sex|gender",
-    "age": "age|age group|agegroup|ages|age class|age at death|age years",
-    "area": "area|area code|region|region code|district|district code|code|geography",
-    "area_name": "area name|region name|district name|name|area label",
-    "deaths": "deaths|death|died|number of deaths|death count|deaths count",
-    "population": "population|person years|personyears|pop|exposure|mid year population|"
-    "midyear population|population at risk",
-    "births": "births|live births|livebirths|number of births",
-    "stillbirths": "stillbirths|still births|stillborn|number of stillbirths|late fetal deaths",
-    "neonatal_deaths": "neonatal deaths|neonatal|deaths under 28 days|deaths before 28 days",
-    "status": "status|state of the figures",
-}
-COUNTS = ("count", "number", "n", "value", "total")  # name a number without saying of what
-RATES = ("rate", "ratio", "per 1000", "percent", "mx", "qx", "probability")
+from server.intake.recognising.names import is_count, is_rate, named, suggests
 
 BY_HEADING = "its heading says so"
+IN_HEADING = "its heading speaks of it"
 BY_VALUES = "its values look like it"
 ONLY_NUMBER = "it is the only column of numbers left"
 RATE = "a rate: rates are worked out from the counts"
@@ -51,10 +35,6 @@ class Recognised:
 class Recognition:
     mapping: Mapping
     columns: tuple[Recognised, ...]  # in the order of the file
-
-
-def _plain(heading: str) -> str:
-    return " ".join(re.split(r"[^0-9a-z]+", heading.casefold())).strip()
 
 
 def _all(test: Callable[[str], object]) -> Callable[[tuple[str, ...]], bool]:
@@ -90,11 +70,9 @@ def recognise(reading: Reading, role: str) -> Recognition:
     fields = fields_of(role)
     found: dict[str, Recognised] = {}
     for column in dict.fromkeys(reading.columns):
-        field = _by_heading(column, fields)
-        if field in {known.field for known in found.values()}:
-            found[column] = Recognised(column, "", "not used", TAKEN)
-        elif field:
-            found[column] = Recognised(column, field, "sure", BY_HEADING)
+        if known := _by_heading(column, fields, reading.values(column)):
+            found[column] = known
+    found = _once_each(found)
     _names_are_no_codes(reading, found)
     for column in dict.fromkeys(reading.columns):
         if column not in found and (rest := _by_values(column, reading, fields, found)):
@@ -107,9 +85,13 @@ def recognise(reading: Reading, role: str) -> Recognition:
     return Recognition(Mapping(**taken), columns)  # type: ignore[arg-type]
 
 
-def _by_heading(column: str, fields: tuple[str, ...]) -> str:
-    heading = _plain(column)
-    return next((field for field in fields if heading in HEADINGS[field].split("|")), "")
+def _by_heading(column: str, fields: tuple[str, ...], values: tuple[str, ...]) -> Recognised | None:
+    """By its whole heading, or by a name within it where its values do not speak against that."""
+    if field := named(column, fields):
+        return Recognised(column, field, "sure", BY_HEADING)
+    field = "" if is_rate(column) else suggests(column, fields)
+    fits = _LOOKS.get(field, _all(_number))(values) or not values
+    return Recognised(column, field, "likely", IN_HEADING) if field and fits else None
 
 
 def _by_values(
@@ -131,23 +113,29 @@ def _last_number(reading: Reading, role: str, found: dict[str, Recognised]) -> N
         column
         for column in reading.columns
         if column not in found
-        and not _is_rate(column)
-        and not _by_heading(column, COLUMNS)  # it says itself that it is something else
+        and not is_rate(column)
+        and not named(column, COLUMNS)  # it says itself that it is something else
         and _all(_number)(reading.values(column))
     ]
-    named = [column for column in numbers if _plain(column) in COUNTS] or numbers
-    if len(wanted) == 1 and len(named) == 1:
-        found[named[0]] = Recognised(named[0], wanted[0], "likely", ONLY_NUMBER)
+    called = [column for column in numbers if is_count(column)] or numbers
+    if len(wanted) == 1 and len(called) == 1:
+        found[called[0]] = Recognised(called[0], wanted[0], "likely", ONLY_NUMBER)
 
 
-def _is_rate(column: str) -> bool:
-    heading = f" {_plain(column)} "
-    return any(f" {word} " in heading for word in RATES)
+def _once_each(found: dict[str, Recognised]) -> dict[str, Recognised]:
+    """Of two columns for the same field the surer one, else the first, is taken."""
+    best: dict[str, str] = {}
+    for column in sorted(found, key=lambda column: found[column].confidence != "sure"):
+        best.setdefault(found[column].field, column)
+    return {
+        column: known if best[known.field] == column else Recognised(column, "", "not used", TAKEN)
+        for column, known in found.items()
+    }
 
 
 def _unused(column: str, fields: tuple[str, ...]) -> Recognised:
-    says = _by_heading(column, COLUMNS)
-    if _is_rate(column):
+    says = named(column, COLUMNS)
+    if is_rate(column):
         why = RATE
     elif says in ("", *fields):
         why = UNKNOWN

@@ -1,0 +1,1 @@
+"""What a handed-in table is likely to mean: proposed with reasons, for the analyst to correct."""
