@@ -1,36 +1,53 @@
-"""How the bytes of a delimited file fall into lines and fields."""
+"""How the text of a file falls into a heading, lines and fields."""
 
 import csv
 import io
-from dataclasses import dataclass
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
-DELIMITERS = {",": "comma", ";": "semicolon", "\t": "tab"}
-BYTE_ORDER_MARK = b"\xef\xbb\xbf"
+from server.intake.forms.delimiters import BLANKS, NAMES, delimited, without_blanks
+from server.intake.forms.found import Found
+from server.intake.forms.headings import joined
+from server.intake.forms.opening import Opened, Tab, opened
+from server.intake.mapping import Form
+from server.intake.problems import Fault
+
 NEWLINE, QUOTE = 10, 34
 LONGEST_HEADING = 100_000  # signs looked at in the heading, and in the first rows
 
 
 @dataclass(frozen=True, slots=True)
 class Layout:
-    """A file cut into a heading and lines; rows are counted from the heading, which is row 1."""
+    """A file cut into a heading and lines; rows are counted as a spreadsheet counts them."""
 
     name: str
-    content: bytes  # lines ended by a line feed, without byte order mark
-    encoding: str
+    form: Form  # as applied: encoding, delimiter and sheet as they were found
+    encoding: str  # in words
+    sure: tuple[str, ...]  # of encoding, delimiter and sheet: those not guessed
     columns: tuple[str, ...]
-    delimiter: str
-    body: bytes  # what follows the heading
+    top: tuple[tuple[str, ...], ...]  # rows above the heading
+    body: bytes  # what follows the heading: UTF-8, lines ended by a line feed
+    first: int  # row of the file in which the body begins
     ends: NDArray[np.int64]  # [line] where each line of the body ends
     fields: NDArray[np.int32]  # [line] how many fields it has; 0: a blank line
     stray: int  # row with a quotation mark that neither opens nor ends a field; 0: there is none
+    tabs: tuple[Tab, ...] = ()  # sheets of a workbook
+    found: tuple[Found, ...] = field(default=())
+
+    @property
+    def delimiter(self) -> str:
+        return self.form.delimiter
 
     @property
     def row_count(self) -> int:
         """Rows below the heading, blank lines not counted."""
         return int(np.count_nonzero(self.fields))
+
+    def row(self, line: int) -> int:
+        """Row of the file of a line of the body."""
+        return self.first + int(line)
 
     def first_rows(self, count: int) -> tuple[tuple[str, ...], ...]:
         """The first rows that are not blank, as text."""
@@ -38,46 +55,92 @@ class Layout:
         if not len(wanted):
             return ()
         start = self.body[: min(self.ends[wanted[-1]], LONGEST_HEADING)].decode(errors="replace")
-        rows = csv.reader(io.StringIO(start, newline=""), delimiter=self.delimiter)
-        return tuple(tuple(row) for row in rows if row)[:count]
+        return tuple(row for row in rows_of(start, self.delimiter) if row)[:count]
 
 
-def layout(content: bytes, name: str) -> Layout:
-    """Cut a file into lines and fields. Never raises; what is wrong the checks of files find."""
-    encoding = "UTF-8"
-    if content.startswith(BYTE_ORDER_MARK):
-        content, encoding = content[3:], "UTF-8 with byte order mark"
-    if b"\r" in content:
-        content = content.replace(b"\r\n", b"\n").replace(b"\r", b"\n")
-    heading, body = _heading(content)
-    delimiter = max(DELIMITERS, key=_outside_quotes(heading).count)
-    ends, fields, stray = _lines(body, delimiter)
-    columns = next(csv.reader([heading], delimiter=delimiter), [])
+def layout(content: bytes, name: str, form: Form | None = None) -> Layout:
+    """Cut a file into heading, lines and fields, as `form` says or, where it says nothing, as the
+    bytes themselves do. Never raises; what is wrong the checks of files find."""
+    form = form or Form()
+    source = opened(content, form)
+    body, form, sure = _delimited(source, form)
+    above, rows = max(form.heading, 1) - 1, max(form.heading_rows, 1)
+    top, body, _ = _taken(body, above)
+    heading, body, torn = _taken(body, rows)
+    ends, fields, stray = _lines(body, form.delimiter)
+    lines = [row for line in heading for row in rows_of(line, form.delimiter) or [()]]
     return Layout(
-        name=name,
-        content=content,
-        encoding=encoding,
-        columns=tuple(column.strip() for column in columns),
-        delimiter=delimiter,
+        name=f"{name} › {form.sheet}" if len(source.tabs) > 1 and form.sheet else name,
+        form=form,
+        encoding=source.label,
+        sure=sure,
+        columns=joined(lines),
+        top=tuple(row for line in top for row in rows_of(line, form.delimiter)[:1] or [()]),
         body=body,
+        first=above + rows + 1,
         ends=ends,
         fields=fields,
-        stray=1 if heading.count('"') % 2 else stray,
+        stray=above + 1 if torn else stray and stray + above + rows,
+        tabs=source.tabs,
+        found=(*source.found, *_unknown(form)),
     )
 
 
-def _heading(content: bytes) -> tuple[str, bytes]:
-    """The first line as text, and the rest."""
-    line, _, rest = content.partition(b"\n")
-    return line.decode(errors="replace")[:LONGEST_HEADING].replace("\0", " "), rest
+def _unknown(form: Form) -> list[Found]:
+    """A delimiter that is none, or rows of headings that cannot be."""
+    if form.delimiter not in NAMES:
+        return [Found("unknown_delimiter", Fault(values={"text": form.delimiter}))]
+    return []
 
 
-def _outside_quotes(line: str) -> str:
-    return "".join(line.split('"')[::2])
+def _delimited(source: Opened, form: Form) -> tuple[bytes, Form, tuple[str, ...]]:
+    """The text with one sign between its fields, and the form with all that was found out."""
+    body, sure = source.body, [*source.sure]
+    delimiter = source.delimiter or form.delimiter
+    if not delimiter:
+        cut = delimited(body, max(form.heading, 1) - 1)
+        delimiter = cut.delimiter
+        sure += ["delimiter"] if cut.sure else []
+    else:
+        sure.append("delimiter")
+    if delimiter == BLANKS:
+        body, delimiter = without_blanks(body), "\t"
+    form = replace(form, delimiter=delimiter, encoding=source.encoding, sheet=source.sheet)
+    return body, form, tuple(sure)
+
+
+def rows_of(text: str, delimiter: str) -> list[tuple[str, ...]]:
+    """Fields of some lines; of a field that is too long for the reader, nothing."""
+    try:
+        rows = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter or ",")
+        return [tuple(row) for row in rows]
+    except csv.Error:
+        return []
+
+
+def _taken(body: bytes, count: int) -> tuple[list[str], bytes, bool]:
+    """The first rows as text, the rest, and whether some quotation mark in them has no partner."""
+    rows, torn = [], False
+    for _ in range(count):
+        end = _row_end(body)
+        torn |= end < 0
+        line = body[: end if end >= 0 else None].partition(b"\n")[0] if end < 0 else body[:end]
+        rows.append(line.decode(errors="replace")[:LONGEST_HEADING].replace("\0", " "))
+        body = body[len(line) + 1 :]
+    return rows, body, torn
+
+
+def _row_end(body: bytes) -> int:
+    """Where the first row ends: at a line feed outside quotation marks; -1 where there is none."""
+    end = body.find(b"\n")
+    while 0 <= end < LONGEST_HEADING and body.count(b'"', 0, end) % 2:
+        end = body.find(b"\n", end + 1)
+    whole = len(body) if end < 0 else end
+    return -1 if body.count(b'"', 0, whole) % 2 else whole
 
 
 def _lines(body: bytes, delimiter: str) -> tuple[NDArray[np.int64], NDArray[np.int32], int]:
-    """Ends of the lines, fields in each, and the row of the first stray quotation mark.
+    """Ends of the lines, fields in each, and the line (from 1) of the first stray quotation mark.
 
     Line feeds and delimiters inside quotes do not count; a doubled quote closes and opens at once.
     """
@@ -96,8 +159,8 @@ def _lines(body: bytes, delimiter: str) -> tuple[NDArray[np.int64], NDArray[np.i
     starts = np.append(0, ends[:-1] + 1)
     fields = np.add.reduceat(splits, starts, dtype=np.int32) + 1
     fields[starts == ends] = 0
-    row = 0 if stray < 0 else int(np.searchsorted(ends, stray)) + 2
-    return ends, fields.astype(np.int32), row
+    line = 0 if stray < 0 else int(np.searchsorted(ends, stray)) + 1
+    return ends, fields.astype(np.int32), line
 
 
 def _stray(text: NDArray[np.uint8], delimiter: str) -> int:

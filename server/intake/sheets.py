@@ -82,7 +82,7 @@ def load(file: Layout, mapping: Mapping, role: str) -> Sheet:
         else:
             coded = _labels(column)
             labels[field] = coded if whole else Labels(coded.codes[kept], coded.texts)
-    return Sheet(role, file.name, mapping, np.flatnonzero(kept) + 2, labels, numbers)
+    return Sheet(role, file.name, mapping, np.flatnonzero(kept) + file.first, labels, numbers)
 
 
 def _table(file: Layout, place: dict[str, int], texts: set[int]) -> pd.DataFrame:

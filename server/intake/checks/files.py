@@ -1,48 +1,32 @@
 """Checks of a file as such: is it a table of text at all."""
 
 from collections import Counter
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 
 import numpy as np
 
 from server.intake.checks.check import LISTED, Check
+from server.intake.forms.found import faults
 from server.intake.layout import Layout
 from server.intake.problems import Fault, Problem
 
 MOST_ROWS = 3_000_000
-MOST_COLUMNS = 200
-SPREADSHEETS = {b"PK\x03\x04": "a zipped spreadsheet", b"\xd0\xcf\x11\xe0": "an old spreadsheet"}
+MOST_COLUMNS = 2_000
 
 
-def _foreign(file: Layout) -> str:
-    """What the file is instead of text; empty where it may be text."""
-    for start, what in SPREADSHEETS.items():
-        if file.content.startswith(start):
-            return what
-    return "bytes of value 0, which no text has" if b"\0" in file.content else ""
-
-
-def _not_text(file: Layout) -> Iterator[Fault]:
-    if what := _foreign(file):
-        yield Fault(values={"what": what})
-
-
-def _not_utf8(file: Layout) -> Iterator[Fault]:
-    try:
-        file.content.decode()
-    except UnicodeDecodeError as error:
-        row = file.content.count(b"\n", 0, error.start) + 1
-        yield Fault(row=row, values={"byte": f"0x{file.content[error.start]:02x}"})
+def _told(key: str) -> Callable[[Layout], list[Fault]]:
+    """What was found while the file was opened."""
+    return lambda file: faults(file.found, key)
 
 
 def _empty(file: Layout) -> Iterator[Fault]:
-    if not file.content.strip():
+    if not file.body.strip() and not "".join(file.columns) and not file.found:
         yield Fault()
 
 
 def _no_rows(file: Layout) -> Iterator[Fault]:
     if not file.row_count:
-        yield Fault(row=1)
+        yield Fault(row=file.first - 1)
 
 
 def _stray_quote(file: Layout) -> Iterator[Fault]:
@@ -53,18 +37,18 @@ def _stray_quote(file: Layout) -> Iterator[Fault]:
 def _blank_heading(file: Layout) -> Iterator[Fault]:
     blank = [place for place, column in enumerate(file.columns, 1) if not column]
     if blank or not file.columns:
-        yield Fault(row=1, values={"place": blank[0] if blank else 1})
+        yield Fault(row=file.form.heading, values={"place": blank[0] if blank else 1})
 
 
 def _doubled_heading(file: Layout) -> Iterator[Fault]:
     for column, count in list(Counter(file.columns).items())[:MOST_COLUMNS]:
         if column and count > 1:
-            yield Fault(column=column, row=1, values={"count": count})
+            yield Fault(column=column, row=file.form.heading, values={"count": count})
 
 
 def _too_many_columns(file: Layout) -> Iterator[Fault]:
     if len(file.columns) > MOST_COLUMNS:
-        yield Fault(row=1, values={"most": MOST_COLUMNS})
+        yield Fault(row=file.form.heading, values={"most": MOST_COLUMNS})
 
 
 def _too_many_rows(file: Layout) -> Iterator[Fault]:
@@ -80,8 +64,8 @@ def _uneven_rows(file: Layout) -> Iterator[Fault]:
     for count in list(dict.fromkeys(counts.tolist()))[:LISTED]:
         lines = wrong[counts == count]
         yield Fault(
-            row=int(lines[0]) + 2,
-            last_row=int(lines[-1]) + 2,
+            row=file.row(lines[0]),
+            last_row=file.row(lines[-1]),
             rows=len(lines),
             values={"count": count, "columns": len(file.columns)},
         )
@@ -95,16 +79,74 @@ CHECKS: tuple[Check[Layout], ...] = (
         found="{what}",
         expected="a CSV file: lines of text, fields between commas, semicolons or tabs",
         remedy="Save the table as CSV with the encoding UTF-8 and upload that file.",
-        find=_not_text,
+        find=_told("not_text"),
     ),
     Check(
-        key="not_utf8",
+        key="broken_package",
         severity="error",
-        meaning="The letters of the file are stored in an encoding other than UTF-8.",
-        found="the byte {byte}",
-        expected="text in the encoding UTF-8",
-        remedy="Save the file again as CSV with the encoding UTF-8.",
-        find=_not_utf8,
+        meaning="A file packed with gzip is damaged or cut short.",
+        found="{packed} bytes that cannot be unpacked to their end",
+        expected="a whole file packed with gzip, or the file itself",
+        remedy="Pack the file again, or upload it unpacked.",
+        find=_told("broken_package"),
+    ),
+    Check(
+        key="package_too_large",
+        severity="error",
+        meaning="A packed file would grow beyond what one upload may hold.",
+        found="{packed} bytes that unpack to more than {most}",
+        expected="at most {most} bytes unpacked",
+        remedy="Split the file by years and upload the parts one after the other.",
+        find=_told("package_too_large"),
+    ),
+    Check(
+        key="package_in_package",
+        severity="error",
+        meaning="A packed file holds another packed file.",
+        found="a packed file inside a packed file",
+        expected="a table of text inside, packed once",
+        remedy="Unpack the file, and upload what is inside.",
+        find=_told("package_in_package"),
+    ),
+    Check(
+        key="unknown_encoding",
+        severity="error",
+        meaning="The mapping names an encoding that is not known here.",
+        found="“{encoding}” as the encoding",
+        expected="one of {known}",
+        remedy="Correct the mapping.",
+        find=_told("unknown_encoding"),
+    ),
+    Check(
+        key="wrong_encoding",
+        severity="error",
+        meaning="Letters of the file are stored in another encoding than the one it is read with, "
+        "or in two different ones.",
+        found="the byte {byte}, which has no meaning there",
+        expected="text in the encoding {encoding}",
+        remedy="Say in the mapping which encoding it is, or save the file again with the encoding "
+        "UTF-8.",
+        find=_told("wrong_encoding"),
+    ),
+    Check(
+        key="encoding_guessed",
+        severity="warning",
+        meaning="The file does not say how its letters are stored and is no UTF-8, so that its "
+        "encoding was guessed.",
+        found="letters read as {encoding}: “{text}”",
+        expected="an encoding that is stated or shows in the bytes",
+        remedy="Look whether the letters are right; if not, say in the mapping which encoding it "
+        "is.",
+        find=_told("encoding_guessed"),
+    ),
+    Check(
+        key="unknown_delimiter",
+        severity="error",
+        meaning="The mapping names a sign between fields that cannot be one.",
+        found="“{text}” as the sign between fields",
+        expected="a comma, a semicolon, a tab, a pipe or a blank",
+        remedy="Correct the mapping.",
+        find=_told("unknown_delimiter"),
     ),
     Check(
         key="empty_file",
@@ -187,7 +229,8 @@ KINDS = {check.key: check for check in CHECKS}
 
 def problems_of(file: Layout) -> list[Problem]:
     """All that is wrong with the file as a table of text; of what is no text, only that."""
-    for only in ("not_text", "empty_file", "too_many_columns"):
+    unopened = [one.key for one in file.found if KINDS[one.key].severity == "error"]
+    for only in (*unopened, "empty_file", "too_many_columns"):
         if problems := KINDS[only].problems(file, file.name):
             return problems
     return [problem for check in CHECKS for problem in check.problems(file, file.name)]
