@@ -25,7 +25,7 @@ from server.intake.checks import areas as area_checks
 from server.intake.layout import layout
 from server.intake.ledger import AgeTotal, Ledger
 from server.intake.mapping import ROLES, Mapping
-from server.intake.problems import Problem
+from server.intake.problems import Problem, errors_of
 from server.intake.schedules import MEASURES, Block, blocks, ordered
 from server.intake.sheets import Sheet, load
 from server.intake.standing import Standing
@@ -57,7 +57,7 @@ class Parsed:
 
     @property
     def errors(self) -> tuple[Problem, ...]:
-        return tuple(problem for problem in self.problems if problem.severity == "error")
+        return errors_of(self.problems)
 
 
 @dataclass(frozen=True, slots=True)
@@ -87,11 +87,12 @@ def parse(handed: Sequence[Handed], standing: Standing | None = None) -> Parsed:
     sheets: list[Sheet] = []
     unread = 0
     for file in sorted(handed, key=lambda file: list(ROLES).index(file.role)):
-        laid = layout(file.content, file.name)
+        laid = layout(file.content, file.name, file.mapping.form)
         found = files.problems_of(laid)
-        found += [] if found else columns.problems_of(columns.Mapped(laid, file.role, file.mapping))
-        if found:
-            problems += found
+        if not errors_of(found):
+            found += columns.problems_of(columns.Mapped(laid, file.role, file.mapping))
+        problems += found
+        if errors_of(found):
             unread += laid.row_count
         else:
             sheets.append(load(laid, file.mapping, file.role))

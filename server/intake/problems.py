@@ -4,7 +4,7 @@ The texts of a problem are texts of the catalogue with their {values} beside the
 can put them into its reader's language; in plain English they are `found`, `expected`, `remedy`.
 """
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field
 from typing import Literal, Protocol, cast
 
@@ -177,3 +177,8 @@ class Problem:
         fields = dict(stored)
         fields["texts"] = Texts(*cast(list[str], fields["texts"]))
         return cls(**fields)  # type: ignore[arg-type]
+
+
+def errors_of(problems: Iterable[Problem]) -> tuple[Problem, ...]:
+    """Those that must be put right."""
+    return tuple(problem for problem in problems if problem.severity == "error")

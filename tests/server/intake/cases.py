@@ -1,14 +1,12 @@
 """One spoilt upload for each kind of problem."""
 
 from collections.abc import Callable
-from dataclasses import dataclass
 
-from server.intake.checks.files import MOST_COLUMNS
 from server.intake.parsing import Handed
+from tests.server.intake.form_cases import FORM_CASES, Case
 from tests.server.intake.tables import (
     births,
     counts,
-    csv,
     deaths,
     persons,
     population,
@@ -24,23 +22,12 @@ OLDEST = where(NORTH_2012, age="85+")
 WOMEN = where(NORTH_2012, sex="f")
 
 
-@dataclass(frozen=True)
-class Case:
-    key: str
-    files: Callable[[], list[Handed]]
-    also: str = ""  # another kind that the same fault must trip
-
-
 def _set(picked: list[dict[str, object]], **values: object) -> Callable[[], list[Handed]]:
     return lambda: [counts(setting(SOUND, picked, **values))]
 
 
 def _mapped(**mapping: object) -> Callable[[], list[Handed]]:
     return lambda: [counts(SOUND, **mapping)]
-
-
-def _bytes(content: bytes) -> Callable[[], list[Handed]]:
-    return lambda: [counts(content)]
 
 
 def _persons(extra: int) -> list[dict[str, object]]:
@@ -52,20 +39,10 @@ def _persons(extra: int) -> list[dict[str, object]]:
 
 WHOLE = rows(("isle",), times=2)
 ONE = OLDEST[:1]
-WIDE = ",".join(f"c{number}" for number in range(MOST_COLUMNS + 1)).encode() + b"\n1\n"
 ALL_AGES = [{**WOMEN[0], "age": "all ages", "deaths": 2_000, "population": 68_259}]
 
 CASES = (
-    Case("not_text", _bytes(b"PK\x03\x04 and so on")),
-    Case("not_utf8", _bytes(csv(SOUND).replace(b"north", "nørth".encode("latin-1")))),
-    Case("empty_file", _bytes(b"\n\n")),
-    Case("no_rows", _bytes(csv(SOUND).split(b"\n")[0])),
-    Case("stray_quote", _bytes(csv(SOUND).replace(b"north,2012", b'no"rth,2012', 1))),
-    Case("blank_heading", lambda: [counts(csv(SOUND).replace(b"area,", b",", 1), area="")]),
-    Case("doubled_heading", _bytes(csv(SOUND).replace(b"population", b"deaths", 1))),
-    Case("too_many_columns", _bytes(WIDE)),
-    Case("too_many_rows", _bytes(b"a\n" + b"1\n" * 3_000_001)),
-    Case("uneven_rows", _bytes(csv(SOUND).replace(b"85+,642", b"85+,1,642", 1))),
+    *FORM_CASES,
     Case("missing_column", _mapped(age="")),
     Case("unknown_column", _mapped(deaths="dead")),
     Case("no_area", _mapped(area="")),
