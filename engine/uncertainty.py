@@ -79,6 +79,16 @@ def estimates(
     return found | simulated(indicators, found, draw, settings)
 
 
+def values(indicators: Sequence[Indicator], panel: Panel, settings: Settings) -> dict[str, Array]:
+    """Each indicator of every population without an interval, by its key; the values of
+    `estimates`, for what has no interval: one edition's figures beside another's.
+
+    Shape:   panel [..., age] -> [...].
+    Missing: nan where the value may not be read.
+    """
+    return {key: one.value for key, one in _bare(indicators, run(panel, settings)).items()}
+
+
 def difference(
     indicator: Indicator,
     this: Panel,

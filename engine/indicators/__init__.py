@@ -21,7 +21,7 @@ from engine.indicators import (
     standardised,
     years_of_life_lost,
 )
-from engine.uncertainty import difference, differences, estimate, estimates
+from engine.uncertainty import difference, differences, estimate, estimates, values
 
 __all__ = [
     "GROUPS",
@@ -35,6 +35,7 @@ __all__ = [
     "estimate",
     "estimates",
     "find",
+    "values",
 ]
 
 FAMILIES = (
