@@ -57,7 +57,6 @@ def persons(table: list[Row]) -> list[Row]:
     """Women and men of a table together."""
     men = {(row["area"], row["year"], row["age"]): row for row in where(table, sex="m")}
     together = []
-    names = ("deaths", "population")
     for woman in where(table, sex="f"):
         man = men[woman["area"], woman["year"], woman["age"]]
         sums = {
