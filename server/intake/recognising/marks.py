@@ -1,0 +1,77 @@
+"""How numbers are written: which mark parts off decimals, and which parts thousands."""
+
+import re
+from collections.abc import Iterable
+from dataclasses import dataclass
+
+_BLANKS = " \u00a0\u2009\u202f"
+_PARTS = f"{_BLANKS}'\u2019.,"
+_NUMBER = re.compile(rf"[+-]?\d+(?:[{_PARTS}]\d+)*(?:[eE][+-]?\d+)?|[+-]?[.,]\d+")
+_GROUPED = {mark: re.compile(rf"[+-]?\d{{1,3}}(?:{re.escape(mark)}\d{{3}})+") for mark in _PARTS}
+
+
+@dataclass(frozen=True, slots=True)
+class Marks:
+    """Signs of the numbers of a file. `sure` is False where the texts can be read in two ways."""
+
+    decimal: str = "."
+    thousands: str = ""
+    sure: bool = True
+    example: str = ""  # a text that shows it; empty where all numbers are plain digits
+    otherwise: tuple[str, str] = (".", "")  # decimal and thousands of the other way to read them
+
+
+def is_number(text: str) -> bool:
+    """Whether a text is a number in any way of writing it.
+
+    >>> [is_number(text) for text in ("12", "1.234,5", "1 234", "85+", "1-4", "")]
+    [True, True, True, False, False, False]
+    """
+    return _NUMBER.fullmatch(text.strip()) is not None
+
+
+def marks(texts: Iterable[str], *, counts: bool = True) -> Marks:
+    """The signs that read all of some numbers.
+
+    Two different marks in one number, the same mark twice, or other than three digits behind one
+    settle it. Where only such as "1.234" stand, both readings are possible: of `counts`, which are
+    whole, the mark of thousands is proposed.
+    """
+    numbers = [text.strip() for text in texts if is_number(text)]
+    doubtful: list[tuple[str, str]] = []
+    thousands = ""
+    for text in numbers:
+        kinds = re.sub(r"[\deE+-]", "", text)
+        if not kinds:
+            continue
+        parting = next((mark for mark in kinds if mark not in ".,"), "")
+        thousands = thousands or parting
+        rest = [mark for mark in kinds if mark in ".,"]
+        if len(set(rest)) == 2:
+            return Marks(decimal=rest[-1], thousands=rest[0], example=text)
+        if len(rest) > 1:
+            return Marks(decimal=_other(rest[0]), thousands=rest[0], example=text)
+        if len(rest) == 1 and (parting or not _GROUPED[rest[0]].fullmatch(text)):
+            return Marks(decimal=rest[0], thousands=_grouping(numbers, rest[0]), example=text)
+        if rest:
+            doubtful.append((rest[0], text))
+    if doubtful:
+        mark, text = doubtful[0]
+        whole, parted = (_other(mark), mark), (mark, thousands)
+        first, second = (whole, parted) if counts else (parted, whole)
+        return Marks(*first, sure=False, example=text, otherwise=second)
+    example = next((text for text in numbers if thousands and thousands in text), "")
+    return Marks(thousands=thousands, example=example)
+
+
+def _other(mark: str) -> str:
+    return "," if mark == "." else "."
+
+
+def _grouping(numbers: list[str], decimal: str) -> str:
+    """The mark of thousands beside a certain mark of decimals; empty where there is none."""
+    for text in numbers:
+        for mark in _PARTS:
+            if mark != decimal and mark in text:
+                return mark
+    return ""
