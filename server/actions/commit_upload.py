@@ -7,13 +7,22 @@ from dataclasses import dataclass
 from server.accounts.viewer import Right, Viewer
 from server.actions import totals
 from server.actions.check_upload import handed
+from server.actions.taking import taken
 from server.intake.parsing import READER, Parsed, parse
 from server.intake.problems import Problem
 from server.intake.report import Report
 from server.store import areas, editions, schedules, uploads
 from server.store.connect import Session, transaction
 from server.store.errors import Refused, Stale
-from server.store.records import Basis, Change, Edition, Selection, Upload
+from server.store.records import (
+    ALL_OF_IT,
+    Basis,
+    Change,
+    Edition,
+    Selection,
+    Taking,
+    Upload,
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,15 +42,15 @@ def commit_upload(
     note: str,
     by: Viewer,
     now: dt.datetime,
-    replace: bool = False,
+    taking: Taking = ALL_OF_IT,
 ) -> Edition:
-    """The newest standing edition and the upload, or with `replace` the upload alone, as a new
-    edition. All or nothing.
+    """The newest standing edition with what is taken of the upload as a new edition. All or
+    nothing.
 
     Raises: NotAllowed; Missing; Stale where another edition stands than at the check; Refused
     where the upload is an edition already, is not mapped or checked, has errors, has warnings and
-    the note is empty, it was changed meanwhile, its areas form no tree, or its totals cannot be
-    summed.
+    the note is empty, it was changed meanwhile, holds nothing of what is to be taken, its areas
+    form no tree, or its totals cannot be summed.
     """
     by.require(Right.COMMIT)
     sound = require_sound(uploads.find(session, upload_id))
@@ -55,7 +64,7 @@ def commit_upload(
     standing = editions.newest_standing(session, sound.upload.collection)
     if (number := standing.number if standing else 0) != sound.base:
         raise Stale(sound.base, number)
-    change = _change(session, sound, read(session, sound.upload), replace=replace)
+    change = change_of(session, sound, read(session, sound.upload), taking)
     prepared = editions.prepare(session, change)
     with transaction(session):
         editions.require_base(session, change.collection, change.base)
@@ -89,15 +98,20 @@ def read(session: Session, upload: Upload) -> Parsed:
     return parsed
 
 
-def _change(session: Session, sound: Sound, parsed: Parsed, *, replace: bool) -> Change:
-    code, base = sound.upload.collection, 0 if replace else sound.base
+def change_of(session: Session, sound: Sound, parsed: Parsed, taking: Taking) -> Change:
+    """What would be written. Raises: Refused, as `taken` and `totals.laid_over` do."""
+    code = sound.upload.collection
+    base = 0 if taking.gives_way == "all" else sound.base
+    stood = areas.listing(session, code, base) if base else ()
+    cells, listed = taken(parsed, taking, stood)
     summed = totals.laid_over(
-        parsed.cells,
-        parsed.areas,
-        base_areas=areas.listing(session, code, base) if base else (),
+        cells,
+        listed,
+        base_areas=stood,
         load=lambda periods: schedules.load(
             session, code, base, Selection(periods=periods, cause=None)
         ),
+        taking=taking,
     )
     return Change(
         collection=code,
@@ -106,8 +120,9 @@ def _change(session: Session, sound: Sound, parsed: Parsed, *, replace: bool) ->
         areas=summed.areas,
         basis=sound.basis,
         upload=sound.upload.id,
-        replace=replace,
+        replace=taking.gives_way == "all",
         ended=summed.ended,
+        taking=taking,
     )
 
 

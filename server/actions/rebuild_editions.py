@@ -6,6 +6,7 @@ from dataclasses import dataclass, field
 from server.accounts.viewer import Right, Viewer
 from server.actions import totals
 from server.actions.commit_upload import read
+from server.actions.taking import taken
 from server.intake.parsing import READER
 from server.store import areas, collections, digests, editions, schedules, uploads
 from server.store.connect import Session
@@ -96,8 +97,10 @@ def _anew(session: Session, edition: Edition, contents: dict[int, _Content]) -> 
             return base.cells
         return {key: cell for key, cell in base.cells.items() if key.period in periods}
 
-    parsed = read(session, upload)
-    summed = totals.laid_over(parsed.cells, parsed.areas, base_areas=base.areas, load=load)
+    cells, listed = taken(read(session, upload), edition.taking, base.areas)
+    summed = totals.laid_over(
+        cells, listed, base_areas=base.areas, load=load, taking=edition.taking
+    )
     kept = {key: cell for key, cell in base.cells.items() if key not in summed.ended}
     return _Content(kept | summed.cells, summed.areas, basis)
 

@@ -9,7 +9,7 @@ import numpy as np
 from engine.ages import AgeGrid
 from server.store.areas import in_tree_order
 from server.store.errors import Refused
-from server.store.records import Area, Key, Vector
+from server.store.records import ALL_OF_IT, Area, Key, Taking, Vector
 
 Cells = Mapping[Key, Vector]
 Slice = tuple[str, str, str, str]  # sex, period, measure, cause: what is summed over areas
@@ -28,12 +28,35 @@ def laid_over(
     *,
     base_areas: tuple[Area, ...],
     load: Callable[[tuple[str, ...] | None], Cells],
+    taking: Taking = ALL_OF_IT,
 ) -> Totalled:
-    """What was handed in with its totals, over a base; `load` gives the base's schedules of some
-    periods (None: of all). Raises: Refused, as `merged` and `totalled` do."""
+    """What was handed in with its totals, over a base of which some gives way to it; `load` gives
+    the base's schedules of some periods (None: of all). Raises: Refused, as `merged` and `totalled`
+    do."""
     listed = merged(areas, base_areas)
-    base = load(periods_needed(handed, listed, base_areas)) if base_areas else {}
-    return totalled(handed, listed, base=base, base_areas=base_areas)
+    every_year = taking.gives_way == "areas"
+    needed = None if every_year else periods_needed(handed, listed, base_areas)
+    base = load(needed) if base_areas else {}
+    gone = giving_way(base, handed, taking)
+    kept = {key: cell for key, cell in base.items() if key not in gone}
+    made = totalled(handed, listed, base=kept, base_areas=base_areas)
+    return replace(made, ended=made.ended | (gone - made.cells.keys()))
+
+
+def giving_way(base: Iterable[Key], handed: Iterable[Key], taking: Taking) -> frozenset[Key]:
+    """Schedules of the base that are dropped for what is taken of an upload, whether it holds the
+    same ones or not."""
+    periods = {key.period for key in handed}
+    areas = {key.area for key in handed}
+    places = {(key.area, key.period) for key in handed}
+    drops: dict[str, Callable[[Key], bool]] = {
+        "cells": lambda key: False,
+        "handed": lambda key: (key.area, key.period) in places,
+        "years": lambda key: key.period in periods,
+        "areas": lambda key: key.area in areas,
+        "all": lambda key: True,
+    }
+    return frozenset(filter(drops[taking.gives_way], base))
 
 
 def merged(areas: Iterable[Area], into: Iterable[Area]) -> tuple[Area, ...]:

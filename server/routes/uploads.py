@@ -23,6 +23,7 @@ from server.routes.asking import Elsewhere, SessionDep, ViewerDep, needs
 from server.routes.forms import FormDep, file, text
 from server.routes.reading_form import basis, mappings
 from server.store import uploads
+from server.store.records import ALL_OF_IT, Taking
 from server.store.errors import Missing
 from server.store.records import Job
 from server.web.problem import Refusal
@@ -192,7 +193,7 @@ def commit(session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep) -
         note=text(form, "note"),
         by=viewer,
         now=dt.datetime.now(dt.UTC),
-        replace=text(form, "replace") == "yes",
+        taking=Taking(gives_way="all") if text(form, "replace") == "yes" else ALL_OF_IT,
     )
     collection = uploads.find(session, upload).collection
     return redirect(f"/c/{collection}/{edition.number}/contents", status=303)

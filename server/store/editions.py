@@ -276,9 +276,14 @@ def _of_rows(found: list[Any]) -> Edition:
             for event in found
             if event.event is not None
         ),
-        taking=_taking(row.taking) if row.taking else ALL_OF_IT,
+        taking=_taking(row.taking) if row.taking else _whole(replaces=row.replaces),
         effect=Effect(**json.loads(row.effect)) if row.effect else None,
     )
+
+
+def _whole(*, replaces: bool) -> Taking:
+    """What was taken where nothing is said of it: all of the upload."""
+    return Taking(gives_way="all") if replaces else ALL_OF_IT
 
 
 def _taking(text: str) -> Taking:

@@ -14,7 +14,7 @@ from server.actions.withdraw_edition import withdraw_edition
 from server.store import areas, editions, rows, schedules, uploads
 from server.store.connect import transaction
 from server.store.errors import Missing, Refused, Stale
-from server.store.records import Edition, Key, Selection
+from server.store.records import ALL_OF_IT, Edition, Key, Selection, Taking
 from tests.factories import BASIS, COLUMNS, NOON, checked_upload, counts_csv, stored_collection
 
 WHOLE = replace(COLUMNS, whole="isle", whole_name="The isle")
@@ -25,10 +25,10 @@ def collection(session: Session) -> None:
     stored_collection(session)
 
 
-def commit(session: Session, upload_id: int, *, note: str = "", replace: bool = False) -> Edition:
-    return commit_upload(
-        session, upload_id=upload_id, note=note, by=LOCAL, now=NOON, replace=replace
-    )
+def commit(
+    session: Session, upload_id: int, *, note: str = "", taking: Taking = ALL_OF_IT
+) -> Edition:
+    return commit_upload(session, upload_id=upload_id, note=note, by=LOCAL, now=NOON, taking=taking)
 
 
 def handed(session: Session, content: bytes, **options: object) -> Edition:
@@ -79,7 +79,7 @@ def test_one_region_handed_in_alone_stays_part_of_the_whole(session: Session) ->
 def test_replacing_leaves_nothing_of_the_base(session: Session) -> None:
     handed(session, counts_csv(), mapping=WHOLE)
     upload = checked_upload(session, counts_csv(["east"]))
-    edition = commit(session, upload.id, replace=True)
+    edition = commit(session, upload.id, taking=Taking(gives_way="all"))
     assert (edition.base, edition.replaces) == (1, True)
     assert schedules.contents(session, "saltmarsh", 2).areas == ("east",)
 

@@ -14,6 +14,7 @@ from server.actions.commit_upload import commit_upload
 from server.actions.rebuild_editions import Rebuilt, rebuild_editions
 from server.intake.parsing import READER
 from server.store.errors import Missing
+from server.store.records import ALL_OF_IT, Taking
 from tests.factories import (
     BASIS,
     COLUMNS,
@@ -28,13 +29,13 @@ from tests.factories import (
 
 WHOLE = replace(COLUMNS, whole="isle")
 DELIVERED = replace(WHOLE, delivered=("isle",))
-HISTORY = (  # content, mapping, basis, whether it replaces what stood
-    (counts_csv(), WHOLE, BASIS, False),
-    (counts_csv(["north"], times=2), COLUMNS, replace(BASIS, source="revised"), False),
-    (counts_csv(times=3), WHOLE, BASIS, False),  # withdrawn
-    (counts_csv(["south"], years=[2002], times=4), WHOLE, BASIS, False),
-    (counts_csv(["east"], years=[2002]), WHOLE, BASIS, False),  # a new part of the whole
-    (counts_csv(years=[2003], sexes="f"), DELIVERED, BASIS, True),
+HISTORY = (  # content, mapping, basis, what is taken of it
+    (counts_csv(), WHOLE, BASIS, ALL_OF_IT),
+    (counts_csv(["north"], times=2), COLUMNS, replace(BASIS, source="revised"), ALL_OF_IT),
+    (counts_csv(times=3), WHOLE, BASIS, ALL_OF_IT),  # withdrawn
+    (counts_csv(["south"], years=[2002], times=4), WHOLE, BASIS, ALL_OF_IT),
+    (counts_csv(["east"], years=[2002]), WHOLE, BASIS, ALL_OF_IT),  # a new part of the whole
+    (counts_csv(years=[2003], sexes="f"), DELIVERED, BASIS, Taking(gives_way="all")),
 )
 
 
@@ -43,7 +44,7 @@ def history(session: Session) -> None:
     stored_collection(session)
     for number, (content, mapping, basis, over) in enumerate(HISTORY, start=1):
         upload = checked_upload(session, content, mapping=mapping, basis=basis)
-        commit_upload(session, upload_id=upload.id, note="n", by=LOCAL, now=NOON, replace=over)
+        commit_upload(session, upload_id=upload.id, note="n", by=LOCAL, now=NOON, taking=over)
         if number == 3:
             withdrawn(session, 3)
 
