@@ -44,7 +44,8 @@ _AGE_CODES = _words(vocabulary.AGE_NOT_STATED)
 _FIRST_YEAR = _words(vocabulary.FIRST_YEAR)
 _ABOUT = re.compile(rf"\b(?:{_any(vocabulary.ABOUT)})|[():,;_\"]")
 _PUNCTUATION = re.compile("[():,;]")
-_FOOTNOTE = re.compile(r" ?(?:\*+|(?<![\d-])\(?\d\))$")
+_FOOTNOTE = re.compile(r" ?(?:\*+|(?<![\d,;-])\(?\d\))$")
+_BRACKETS = re.compile(r"\(([^()]*)\)")
 
 _N = r"(\d{1,3})(?:[.,]0+)?"
 _ONE = rf"(?:{_N}|(?:{_any(vocabulary.ONE)}))"
@@ -81,6 +82,8 @@ def read_age(text: str) -> Age | None:
 Age(start=85, end=None, open=True))
     """
     label = _FOOTNOTE.sub("", folded(text))
+    if match := _BRACKETS.fullmatch(label):
+        label = match[1].strip()
     if label in _ALL_AGES or _PUNCTUATION.sub("", label) in _ALL_AGES:
         return ALL_AGES
     if label in _AGE_CODES or label in _SIGNS or not_stated(label):

@@ -81,7 +81,7 @@ DAYS += "dzien|dni"
 ONE = "one|un|une|uno|una|um|uma|ein|eine|einem|einen|einer|een|en|et|ett|jeden|jednego"
 ZERO = "zero|null|nul|noll|nulla|cero"
 FROM = "from|de|desde|da|dai|dal|von|van|fra|fran|od|d'"
-TO = "to|till|til|through|thru|until|a|au|bis|ate|hasta|al|tot|tot en met|t/m|do"
+TO = "to|till|til|through|thru|until|a|au|bis|ate|hasta|al|tot en met|t/m|do"
 BELOW_END = (
     "- <|to <|to under|to less than|to below|bis unter|tot|a menos de|a moins de|a menos|til under|"
 )
