@@ -5,9 +5,9 @@ from dataclasses import fields, replace
 
 import pytest
 
-from server.intake.recognising import columns
 from server.intake.mapping import COLUMNS, Mapping
 from server.intake.reading import read
+from server.intake.recognising import columns
 from server.intake.recognising.columns import Recognised, recognise
 
 
