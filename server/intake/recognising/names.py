@@ -71,10 +71,6 @@ RATES = (
     "rate je|ziffer|sterbeziffer|rate pro|wahrscheinlichkeit|tasa|probabilidad|taxa|tasso|"
     "quoziente|probabilita|cijfer|kans|kvotient|kvot|wskaznik|wspolczynnik"
 )
-_THOUSANDS = re.compile(
-    r"\b(?:thousands?|000s?|1 ?000s?|milliers?|tausend|tsd|miles|milhares|mil|migliaia|duizend|"
-    r"duizendtal(?:len)?|tusinde?r?|tusen(?:tal)?|tys(?:iace|iacach)?)\b"
-)
 _NUMBERS = ("deaths", "population", "births", "stillbirths", "neonatal_deaths")
 _ALONE = ("area", "area_name", "status")  # too common a word to be looked for inside a heading
 _NOT = re.compile(
@@ -131,8 +127,3 @@ def is_count(heading: str) -> bool:
 def is_rate(heading: str) -> bool:
     """Whether a heading speaks of a rate, a ratio or a probability."""
     return _RATES.search(plain(heading)) is not None
-
-
-def says_thousands(heading: str) -> bool:
-    """Whether a heading says that its figures are in thousands."""
-    return _THOUSANDS.search(plain(heading)) is not None and not is_rate(heading)
