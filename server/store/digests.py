@@ -5,7 +5,8 @@ A digest covers codes, status, age starts and numbers, never row ids, dates, peo
 
 import hashlib
 import json
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
 from functools import lru_cache
 
 import numpy as np
@@ -25,6 +26,11 @@ def canonical(values: Array) -> Array:
     numbers = np.array(values, "<f8", ndmin=1)
     if numbers.ndim != 1:
         raise ValueError(f"a vector has the axis age only; found the shape {numbers.shape}")
+    return _canonical(numbers)
+
+
+def _canonical(numbers: Array) -> Array:
+    """In place; any axes."""
     if np.isinf(numbers).any():
         raise ValueError("a count is infinite; expected a number, or nan where there is none")
     small = np.abs(numbers) < _ROUNDED_BELOW
@@ -39,11 +45,39 @@ def starts(grid: AgeGrid) -> str:
     return grid.code
 
 
+@dataclass(frozen=True, slots=True)
+class Packed:
+    """A schedule as it is stored."""
+
+    digest: bytes  # 32 bytes
+    vector: bytes  # '<f8'
+
+
+def packed(cells: Mapping[Key, Vector]) -> dict[Key, Packed]:
+    """Many schedules at once: those of one grid are made canonical together."""
+    by_grid: dict[AgeGrid, list[Key]] = {}
+    for key, cell in cells.items():
+        by_grid.setdefault(cell.grid, []).append(key)
+    found: dict[Key, Packed] = {}
+    for grid, keys in by_grid.items():
+        numbers = np.array([cells[key].values for key in keys], "<f8")
+        if numbers.shape != (len(keys), len(grid)):
+            raise ValueError(f"vectors on {len(grid)} age groups have the shape {numbers.shape}")
+        content, width = _canonical(numbers).tobytes(), 8 * len(grid)
+        for place, key in enumerate(keys):
+            vector = content[place * width : (place + 1) * width]
+            found[key] = Packed(_of_schedule(key, cells[key], vector), vector)
+    return found
+
+
 def of_schedule(key: Key, vector: Vector) -> bytes:
     """Digest of one schedule, 32 bytes."""
+    return _of_schedule(key, vector, canonical(vector.values).tobytes())
+
+
+def _of_schedule(key: Key, vector: Vector, tail: bytes) -> bytes:
     codes = ("schedule", key.area, key.sex, key.period, key.measure, key.cause)
     marks = ("estimated",) if vector.estimated else ()
-    tail = canonical(vector.values).tobytes()
     return _digest(*codes, vector.status, starts(vector.grid), *marks, tail=tail)
 
 
@@ -75,6 +109,11 @@ def of_edition(parts: Iterable[bytes]) -> str:
 
 
 def _digest(*words: str, tail: bytes = b"") -> bytes:
-    # JSON keeps the words apart whatever stands in them, and has no zero byte
-    head = json.dumps(words, ensure_ascii=False).encode()
-    return hashlib.sha256(head + b"\0" + tail).digest()
+    # a list in JSON keeps the words apart whatever stands in them, and has no zero byte
+    head = ", ".join(map(_quoted, words))
+    return hashlib.sha256(b"[%b]\0%b" % (head.encode(), tail)).digest()
+
+
+@lru_cache(maxsize=4096)
+def _quoted(word: str) -> str:
+    return json.dumps(word, ensure_ascii=False)

@@ -2,7 +2,7 @@
 
 import datetime as dt
 import json
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 from dataclasses import asdict, dataclass, replace
 from itertools import groupby
 from typing import Any, Literal
@@ -22,6 +22,7 @@ from server.store.records import (
     Edition,
     Effect,
     Event,
+    Key,
     Taking,
 )
 from server.store.tables import AreaRange, BasisRange, BreakRange, EditionEvent, Schedule
@@ -33,6 +34,7 @@ class Prepared:
     """A change, and what it alters in the tables. Made without a lock."""
 
     change: Change
+    packed: Mapping[Key, digests.Packed]  # its cells, as they are stored
     collection: Collection
     highest: int  # the number it was compared with
     schedules: ranges.Difference
@@ -52,6 +54,7 @@ class Prepared:
         restated = sum(
             altered.get(rows.of(key)) == digests.of_schedule(key, replace(cell, status=status))
             for key, cell in self.change.cells.items()
+            if rows.of(key) in altered
             for status in STATUSES
             if status != cell.status
         )
@@ -109,9 +112,11 @@ def prepare(session: Session, change: Change) -> Prepared:
             replace=change.replace,
         )
 
-    cells = {rows.of(key): digests.of_schedule(key, cell) for key, cell in change.cells.items()}
+    packed = digests.packed(change.cells)
+    cells = {rows.of(key): one.digest for key, one in packed.items()}
     return Prepared(
         change,
+        packed,
         collection,
         against,
         schedules=compared(Schedule, cells, frozenset(map(rows.of, change.ended))),
@@ -152,7 +157,11 @@ def write(session: Session, prepared: Prepared, *, by: str, note: str, at: dt.da
         )
     )
     for table, part, added in (
-        (Schedule, prepared.schedules, rows.schedules(session, prepared.schedules.add, change)),
+        (
+            Schedule,
+            prepared.schedules,
+            rows.schedules(session, prepared.schedules.add, change, prepared.packed),
+        ),
         (AreaRange, prepared.areas, rows.areas(prepared.areas.add, change)),
         (BasisRange, prepared.basis, rows.basis(prepared.basis.add, change)),
         (BreakRange, prepared.breaks, rows.breaks(prepared.breaks.add, change)),

@@ -4,6 +4,7 @@ import datetime as dt
 import re
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import asdict
+from functools import lru_cache
 from typing import Any
 
 from sqlalchemy import insert, select, update
@@ -13,29 +14,37 @@ from sqlalchemy.orm import Session
 from server.store import digests
 from server.store.ranges import RowKey
 from server.store.records import Area, Break, Change, Key
-from server.store.tables import AreaName, BreakRange, Grid, Schedule
+from server.store.tables import AreaName, BreakRange, Grid
 
 Rows = Iterator[Mapping[str, Any]]
 
 
 def of(key: Key) -> RowKey:
     """The key in the order of the table's own."""
-    return tuple(getattr(key, name) for name in Schedule.KEY)
+    return (key.area, key.sex, key.period, key.measure, key.cause)
 
 
-def schedules(session: Session, added: Mapping[RowKey, bytes], change: Change) -> Rows:
-    cells = {row: cell for key, cell in change.cells.items() if (row := of(key)) in added}
+def schedules(
+    session: Session,
+    added: Mapping[RowKey, bytes],
+    change: Change,
+    packed: Mapping[Key, digests.Packed],
+) -> Rows:
+    cells = {key: cell for key, cell in change.cells.items() if of(key) in added}
     grids = _grids(session, {digests.starts(cell.grid) for cell in cells.values()})
     for key, cell in cells.items():
-        named = dict(zip(Schedule.KEY, key, strict=True))
         yield {
-            **named,
-            "period_start": start_of(named["period"]),
+            "area": key.area,
+            "sex": key.sex,
+            "period": key.period,
+            "measure": key.measure,
+            "cause": key.cause,
+            "period_start": start_of(key.period),
             "status": cell.status,
             "estimated": cell.estimated,
             "grid_id": grids[digests.starts(cell.grid)],
-            "vector": digests.canonical(cell.values).tobytes(),
-            "digest": added[key],
+            "vector": packed[key].vector,
+            "digest": packed[key].digest,
         }
 
 
@@ -84,6 +93,7 @@ def name_areas(session: Session, collection_id: int, named: Sequence[Area]) -> N
             session.execute(insert(AreaName).values(row))
 
 
+@lru_cache(maxsize=1024)
 def start_of(period: str) -> dt.date:
     """First day of a period. Raises: ValueError for what is no ISO 8601 year, '2014'.
 
