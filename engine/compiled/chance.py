@@ -33,7 +33,7 @@ class Sampler:
 
     def expectancies(self, drawn: Array, exposure: Array, weight: Array, ratio: Array) -> Array:
         """e0 of drawn deaths [age, draw], which are used up: [draw], to be copied."""
-        weight, ratio = (np.array(part, float).reshape(1, 1, 2) for part in (weight, ratio))
+        weight, ratio = (np.array(part, float) for part in (weight, ratio))
         _expectancies(self.rules, drawn, np.array(exposure, float), weight, ratio, self.found)
         return self.found
 
@@ -89,8 +89,8 @@ def _expectancies(
     ratio: Array,
     found: Array,
 ) -> None:
-    """e0 of each table of one population: drawn [age, draw], exposure [age], weight, ratio
-    [1, 1, 2] -> found [draw]. From the top down, e(x) = a q + (1 - q) (n + e(x+n))."""
+    """e0 of each table of one population: drawn [age, draw], exposure [age], weight, ratio [2]
+    -> found [draw]. From the top down, e(x) = a q + (1 - q) (n + e(x+n))."""
     top = exposure.size - 1
     for x in range(top, 0, -1):
         if exposure[x] == 0:
@@ -136,7 +136,7 @@ def _early(
     n, pieces = rules.widths[x], rules.first if x == 0 else rules.child
     for i in range(found.size):
         m, m0 = drawn[i] / years, infant[i] / infants if infants > 0 else np.nan
-        a = by_infant_rate(pieces, m0, weight, ratio, 0, 0)[0]
+        a = by_infant_rate(pieces, m0, weight[0], weight[1], ratio[0], ratio[1])[0]
         a = 1 / m if a * m > 1 else a
         q = n * m / (1 + (n - a) * m)
         q = 1.0 if q > 1 else q

@@ -5,12 +5,17 @@ in: numba itself looks only at the file of the function called. NUMBA_CACHE_DIR 
 """
 
 import hashlib
+import math
 import os
 from collections.abc import Callable
 from pathlib import Path
 from typing import Any, TypeVar, cast
 
 import numba
+import numpy as np
+from numba.core.compiler import Compiler
+
+from engine.ages import Array
 
 Function = TypeVar("Function", bound=Callable[..., Any])
 
@@ -26,8 +31,8 @@ if "NUMBA_CACHE_DIR" not in os.environ:
 
 
 def compiled(function: Function) -> Function:
-    """Every operation rounded as it is written, as numpy does."""
-    return cast(Function, numba.njit(cache=True, error_model="numpy")(function))
+    """Every operation rounded as it is written, as numpy does, whatever function calls it."""
+    return cast(Function, numba.njit(cache=True, error_model="numpy", fastmath=False)(function))
 
 
 def summing(function: Function) -> Function:
@@ -39,4 +44,31 @@ def summing(function: Function) -> Function:
 def fused(function: Function) -> Function:
     """A product and the sum it goes into are rounded once, together."""
     kept: Any = numba.njit(cache=True, error_model="numpy", fastmath={"contract"})
+    return cast(Function, kept(function))
+
+
+def aligned(*shape: int) -> Array:
+    """Zeros that begin where a line of the cache does, so that no vector of them lies on two."""
+    size = math.prod(shape)
+    room = np.zeros(size + 8)
+    first = -room.ctypes.data % 64 // 8
+    return room[first : first + size].reshape(shape)
+
+
+class _Apart(Compiler):
+    """Arrays that a function is given never overlap: no step is held back lest it change what the
+    next one reads."""
+
+    def define_pipelines(self) -> Any:
+        self.state.flags.noalias = True
+        pipelines: Any = super()
+        return pipelines.define_pipelines()
+
+
+def side_by_side(function: Function) -> Function:
+    """Its innermost loops are worked on several places at a time; a product and the sum it goes
+    into are rounded once. The arrays must not overlap."""
+    kept: Any = numba.njit(
+        cache=True, error_model="numpy", fastmath={"contract"}, pipeline_class=_Apart
+    )
     return cast(Function, kept(function))

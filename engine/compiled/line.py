@@ -1,5 +1,9 @@
 """What each age contributes to the difference in e0, for many pairs: the gradient of e0 integrated
 along the straight line between two columns of rates, as in engine.decomposition.straight.
+
+LANES pairs are worked on side by side, [age, lane], so that what is carried from age to age is
+carried for all of them at once. Each lane has its own place on its own line; where a line is cut
+into fewer pieces than one beside it, its lane stands at the end with no weight.
 """
 
 from typing import NamedTuple
@@ -7,22 +11,41 @@ from typing import NamedTuple
 import numpy as np
 
 from engine.ages import Array
-from engine.compiled.jit import fused
+from engine.compiled.cuts import Cuts, Pairs, cut, edge, uncut
+from engine.compiled.jit import aligned, fused, side_by_side
 from engine.compiled.rules import Rules, by_infant_rate
-from engine.decomposition.straight import BESIDE_JUMP, DOUBLINGS, NODES, WEIGHTS
+from engine.decomposition.straight import BESIDE_JUMP, NODES, WEIGHTS
 from engine.panel import Panel
 from engine.stages.rates import death_rates
 
+LANES = 32  # so many that the steps from one age to the next need not wait for each other
 
-class Room(NamedTuple):
-    """For the table of one node, each [age]."""
 
-    ax: Array
-    own: Array  # slope of ax in the rate of its own group
+class Lines(NamedTuple):
+    """The lines of LANES pairs: where they start and how far they go."""
+
+    mx: Array  # [age, lane]
+    mx_step: Array
+    weight: Array  # [sex, lane]
+    weight_step: Array
+    ratio: Array
+    ratio_step: Array
+
+
+class Places(NamedTuple):
+    """A place on each line, and the tables there as far as they are needed."""
+
+    t: Array  # [lane]
+    share: Array  # [lane]; weight of the place
+    ax: Array  # [age, lane], as all that follows but the last four
     qx: Array
-    ex: Array
-    per: Array
-    reach: Array  # survivors
+    after: Array  # years of the group not lived by those who die in it
+    drop: Array  # by what e0 falls as mx rises, for each year that a death takes; times the weight
+    mean: Array  # the gradient of e0 in mx, summed over places
+    bend: Array  # [group, lane]; slope of ax in m0, of the first two groups
+    ahead: Array  # [group, lane]; e(x+n), of the same
+    alive: Array  # [lane]; in the end, who reaches the open age
+    left: Array  # [lane]; in the end, e0
 
 
 def explain(rules: Rules, lower: Panel, upper: Panel, by_age: Array, difference: Array) -> None:
@@ -35,219 +58,218 @@ def explain(rules: Rules, lower: Panel, upper: Panel, by_age: Array, difference:
         np.stack([getattr(one, name) for one in (lower, upper)])
         for name in ("infant_weight", "infant_ratio")
     )
-    room = Room(*(np.empty(start.shape[1]) for _ in Room._fields))
-    _contributions(rules, start, end, weight, ratio, room, by_age, difference)
+    whole, two, one = (len(rules.starts), LANES), (2, LANES), (LANES,)
+    lines = Lines(*(aligned(*shape) for shape in (whole, whole, two, two, two, two)))
+    shapes = (one, one, *(whole,) * 5, two, two, one, one)
+    places = Places(*(aligned(*shape) for shape in shapes))
+    places.ax[:] = rules.widths[:, None] / 2
+    pairs, cuts = Pairs(start, end, weight, ratio), uncut(rules, LANES)
+    _contributions(rules, pairs, lines, cuts, places, by_age, difference)
     by_age[~np.isfinite(difference)] = np.nan
 
 
 @fused
 def _contributions(
     rules: Rules,
-    start: Array,
-    end: Array,
-    weight: Array,
-    ratio: Array,
-    room: Room,
+    pairs: Pairs,
+    lines: Lines,
+    cuts: Cuts,
+    places: Places,
     by_age: Array,
     difference: Array,
 ) -> None:
-    """start, end [pair, age] are rates, weight, ratio [end of the line, pair, 2] the infants' mix;
-    into by_age [pair, age] and difference [pair]."""
-    ages = start.shape[1]
-    cuts, toward = np.empty(10 + DOUBLINGS + 3 * ages), np.empty(10 + DOUBLINGS + 3 * ages)
-    mx, mean = np.empty(ages), np.empty(ages)
-    mix = np.empty((2, 1, 1, 2))
-    for p in range(start.shape[0]):
-        mean[:] = 0.0
-        bent = _bends(rules, start, end, p, room)
-        size = _cuts(rules, start, end, weight, ratio, p, bent, cuts, toward)
-        for piece in range(size + 1):
-            low = cuts[piece - 1] if piece else 0.0
-            high = cuts[piece] if piece < size else 1.0
-            if high <= low:
-                continue
-            for node in range(NODES.size):
-                t = low + (high - low) * ((1 + NODES[node]) / 2)
-                _at(start, end, weight, ratio, p, t, mx, mix)
-                _add_slopes(rules, mx, mix, (high - low) * (WEIGHTS[node] / 2), bent, room, mean)
-        for x in range(ages):
-            by_age[p, x] = mean[x] * (end[p, x] - start[p, x])
-        way = end[p, 0] - start[p, 0]
-        for piece in range(size):
-            after = cuts[piece + 1] if piece + 1 < size else 1.0
-            if cuts[piece] < after and toward[piece] == np.sign(way) and way != 0:
-                _at(start, end, weight, ratio, p, cuts[piece], mx, mix)
-                m0 = mx[0]
-                mx[0] = m0 * (1 + BESIDE_JUMP)
-                above = _expectancy(rules, mx, mix, bent, room)
-                mx[0] = m0 * (1 - BESIDE_JUMP)
-                by_age[p, 0] += np.sign(way) * (above - _expectancy(rules, mx, mix, bent, room))
-        _at(start, end, weight, ratio, p, 1.0, mx, mix)
-        last = _expectancy(rules, mx, mix, bent, room)
-        _at(start, end, weight, ratio, p, 0.0, mx, mix)
-        difference[p] = last - _expectancy(rules, mx, mix, bent, room)
+    for first in range(0, by_age.shape[0], LANES):
+        _load(pairs, first, lines)
+        cut(rules, pairs, first, cuts)
+        places.mean[:] = 0.0
+        for piece in range(cuts.many.max() + 1):
+            _add_piece(rules, lines, cuts, piece, places)
+        _write(places.mean, lines.mx_step, by_age[first : first + LANES])
+        for piece in range(cuts.many.max()):
+            _add_jumps(rules, lines, cuts, piece, places, by_age[first : first + LANES])
+        _differ(rules, lines, places, difference[first : first + LANES])
 
 
 @fused
-def _bends(rules: Rules, start: Array, end: Array, p: int, room: Room) -> bool:
-    """Whether more would die than enter in any group anywhere on the line; where not, ax is half
-    the width all along but for the first years, and stands in `room` from here on."""
-    ax, own, n, full = room.ax, room.own, rules.widths, 0
-    for x in range(start.shape[1] - 1):
-        full += n[x] / 2 * max(start[p, x], end[p, x]) > 1
-        ax[x], own[x] = n[x] / 2, 0.0
-    return full > 0
-
-
-@fused
-def _at(
-    start: Array,
-    end: Array,
-    weight: Array,
-    ratio: Array,
-    p: int,
-    t: float,
-    mx: Array,
-    mix: Array,
-) -> None:
-    """Rates and mix (of weight and of ratio) at t."""
-    for x in range(mx.size):
-        mx[x] = start[p, x] + t * (end[p, x] - start[p, x])
+def _load(pairs: Pairs, first: int, lines: Lines) -> None:
+    """Lanes that are left over take the last pair again."""
+    start, end, weight, ratio = pairs
+    last = start.shape[0] - 1
+    for x in range(start.shape[1]):
+        for lane in range(LANES):
+            p = min(first + lane, last)
+            lines.mx[x, lane] = start[p, x]
+            lines.mx_step[x, lane] = end[p, x] - start[p, x]
     for sex in range(2):
-        mix[0, 0, 0, sex] = weight[0, p, sex] + t * (weight[1, p, sex] - weight[0, p, sex])
-        mix[1, 0, 0, sex] = ratio[0, p, sex] + t * (ratio[1, p, sex] - ratio[0, p, sex])
+        for lane in range(LANES):
+            p = min(first + lane, last)
+            lines.weight[sex, lane] = weight[0, p, sex]
+            lines.weight_step[sex, lane] = weight[1, p, sex] - weight[0, p, sex]
+            lines.ratio[sex, lane] = ratio[0, p, sex]
+            lines.ratio_step[sex, lane] = ratio[1, p, sex] - ratio[0, p, sex]
 
 
 @fused
-def _cuts(
+def _add_piece(rules: Rules, lines: Lines, cuts: Cuts, piece: int, places: Places) -> None:
+    """The gradient at the nodes of one piece of each line."""
+    low, width = np.empty(LANES), np.empty(LANES)
+    for lane in range(LANES):
+        low[lane] = edge(cuts, lane, piece)
+        width[lane] = edge(cuts, lane, piece + 1) - low[lane]
+    for node in range(NODES.size):
+        places.t[:] = low + width * ((1 + NODES[node]) / 2)
+        places.share[:] = width * (WEIGHTS[node] / 2)
+        _add_slopes(rules, lines, places)
+
+
+@fused
+def _write(mean: Array, step: Array, by_age: Array) -> None:
+    for x in range(by_age.shape[1]):
+        for lane in range(by_age.shape[0]):
+            by_age[lane, x] = mean[x, lane] * step[x, lane]
+
+
+@fused
+def _add_jumps(
+    rules: Rules, lines: Lines, cuts: Cuts, piece: int, places: Places, by_age: Array
+) -> None:
+    """What e0 jumps by where the infant rate moves through the break of a first-year rule: e0 just
+    above the break less e0 just below. Of equal cuts the last one counts."""
+    way, lanes = np.zeros(LANES), by_age.shape[0]
+    for lane in range(lanes):
+        places.t[lane] = edge(cuts, lane, piece + 1)
+        toward = cuts.toward[lane, piece] if piece < cuts.many[lane] else 0.0
+        last = places.t[lane] < edge(cuts, lane, piece + 2)
+        way[lane] = toward if last and toward == np.sign(lines.mx_step[0, lane]) else 0.0
+    if not np.any(way):
+        return
+    start, step = lines.mx[0].copy(), lines.mx_step[0].copy()
+    for side in (1.0, -1.0):
+        lines.mx[0], lines.mx_step[0] = (
+            start * (1 + side * BESIDE_JUMP),
+            step * (1 + side * BESIDE_JUMP),
+        )
+        _expect(rules, lines, places)
+        for lane in range(lanes):
+            if way[lane] != 0:
+                by_age[lane, 0] += side * way[lane] * places.left[lane]
+    lines.mx[0], lines.mx_step[0] = start, step
+
+
+@fused
+def _differ(rules: Rules, lines: Lines, places: Places, difference: Array) -> None:
+    places.t[:] = 1.0
+    _expect(rules, lines, places)
+    difference[:] = places.left[: difference.size]
+    places.t[:] = 0.0
+    _expect(rules, lines, places)
+    difference -= places.left[: difference.size]
+
+
+@fused
+def _expect(rules: Rules, lines: Lines, places: Places) -> None:
+    """e0 at these places, into `left`."""
+    places.share[:] = 0.0
+    _add_slopes(rules, lines, places)
+
+
+@fused
+def _add_slopes(rules: Rules, lines: Lines, places: Places) -> None:
+    """The gradient of e0 in mx at these places, times their weight, added to the mean."""
+    t, share, ax, qx, after, drop, mean, _, ahead, alive, left = places
+    if rules.first.shape[1]:
+        _early(rules.first, lines, 0, places)
+    if rules.child.shape[1]:
+        _early(rules.child, lines, 1, places)
+    _down(rules, lines.mx, lines.mx_step, t, share, ax, qx, after, drop, alive)
+    _close(lines.mx[-1], lines.mx_step[-1], t, share, alive, left, mean[-1])
+    _up(rules, qx, after, drop, mean, left, ahead)
+    if rules.first.shape[1]:
+        _add_bend(lines, 0, places)
+    if rules.child.shape[1]:
+        _add_bend(lines, 1, places)
+
+
+@side_by_side
+def _early(pieces: Array, lines: Lines, group: int, places: Places) -> None:
+    """ax of one of the first two groups, and its slope in m0."""
+    for lane in range(LANES):
+        t = places.t[lane]
+        places.ax[group, lane], places.bend[group, lane] = by_infant_rate(
+            pieces,
+            lines.mx[0, lane] + t * lines.mx_step[0, lane],
+            lines.weight[0, lane] + t * lines.weight_step[0, lane],
+            lines.weight[1, lane] + t * lines.weight_step[1, lane],
+            lines.ratio[0, lane] + t * lines.ratio_step[0, lane],
+            lines.ratio[1, lane] + t * lines.ratio_step[1, lane],
+        )
+
+
+@side_by_side
+def _down(
     rules: Rules,
     start: Array,
-    end: Array,
-    weight: Array,
-    ratio: Array,
-    p: int,
-    bent: bool,
-    cuts: Array,
-    toward: Array,
-) -> int:
-    """Where the line is cut, in order, and in which direction a first-year rule changes there."""
-    size, top = 0, start.shape[1] - 1
-    for pieces in (rules.first, rules.child):
-        for sex in range(2):
-            if weight[0, p, sex] <= 0 and weight[1, p, sex] <= 0:
-                continue
-            for k in range(1, pieces.shape[1]):
-                size = _passes(pieces[sex, k, 0], start, end, ratio, p, sex, cuts, toward, size)
-    for x in range(top if bent else 0):
-        step = end[p, x] - start[p, x]
-        size = _cut((2 / rules.widths[x] - start[p, x]) / step, 0.0, cuts, toward, size)
-    step, level = end[p, top] - start[p, top], min(start[p, top], end[p, top])
-    for _ in range(DOUBLINGS):
-        level *= 2
-        if level >= start[p, top] and level >= end[p, top]:
-            break
-        size = _cut((level - start[p, top]) / step, 0.0, cuts, toward, size)
-    return size
-
-
-@fused
-def _passes(
-    level: float,
-    start: Array,
-    end: Array,
-    ratio: Array,
-    p: int,
-    sex: int,
-    cuts: Array,
-    toward: Array,
-    size: int,
-) -> int:
-    """Where ratio * m0 of a sex is at a level; both move evenly, so this is a quadratic."""
-    m0, way = start[p, 0], end[p, 0] - start[p, 0]
-    times, turn = ratio[0, p, sex], ratio[1, p, sex] - ratio[0, p, sex]
-    a, b, c = turn * way, times * way + m0 * turn, times * m0 - level
-    half = -(b + np.copysign(np.sqrt(b * b - 4 * a * c), b)) / 2
-    size = _cut(half / a, np.sign(b + 2 * a * (half / a)), cuts, toward, size)
-    return _cut(c / half, np.sign(b + 2 * a * (c / half)), cuts, toward, size)
-
-
-@fused
-def _cut(t: float, sign: float, cuts: Array, toward: Array, size: int) -> int:
-    """One more cut, put in its place; of equal ones the later comes last."""
-    if not 0 < t < 1:
-        return size
-    place = size
-    while place > 0 and cuts[place - 1] > t:
-        cuts[place], toward[place] = cuts[place - 1], toward[place - 1]
-        place -= 1
-    cuts[place], toward[place] = t, sign
-    return size + 1
-
-
-@fused
-def _table(
-    rules: Rules, mx: Array, mix: Array, bent: bool, room: Room
-) -> tuple[float, float, float]:
-    """Into room [ax, its slope, qx, ex, n / (1 + (n - ax) mx), survivors]; the slope of a(1-4) in
-    m0, the years left at the top, and e0."""
-    ax, own, qx, ex, per, reach = room
-    n, top, child = rules.widths, mx.size - 1, 0.0
-    if bent:
-        for x in range(top):
-            ax[x] = 1 / mx[x] if n[x] / 2 * mx[x] > 1 else n[x] / 2
-        for x in range(top):
-            own[x] = -1 / mx[x] ** 2 if n[x] / 2 * mx[x] > 1 else 0.0
-    if rules.first.shape[1]:
-        ax[0], own[0] = by_infant_rate(rules.first, mx[0], mix[0], mix[1], 0, 0)
-    if rules.child.shape[1]:
-        ax[1], child = by_infant_rate(rules.child, mx[0], mix[0], mix[1], 0, 0)
-        own[1] = 0.0
-    for x in range(min(2, top)):
-        if ax[x] * mx[x] > 1:
-            ax[x], own[x] = 1 / mx[x], -1 / mx[x] ** 2
-            child = 0.0 if x == 1 else child
-    for x in range(top):  # one result a loop: of more, not all could be worked on side by side
-        per[x] = n[x] / (1 + (n[x] - ax[x]) * mx[x])
-    for x in range(top):
-        q = mx[x] * per[x]
-        qx[x] = 1.0 if q > 1 else q
-    for x in range(top):
-        ex[x] = n[x] - (n[x] - ax[x]) * qx[x]
-    left = np.nan if mx[top] == 0 else 1 / mx[top]
-    ex[top] = left
-    alive = 1.0
-    for x in range(top):  # up and down at once: each step of either waits for the one before it
-        y = top - 1 - x
-        reach[x] = alive
-        alive -= alive * qx[x]
-        left = ex[y] + (left - left * qx[y])
-        ex[y] = left
-    reach[top] = alive
-    return child, ex[top], ex[0]
-
-
-@fused
-def _expectancy(rules: Rules, mx: Array, mix: Array, bent: bool, room: Room) -> float:
-    return _table(rules, mx, mix, bent, room)[2]
-
-
-@fused
-def _add_slopes(
-    rules: Rules, mx: Array, mix: Array, share: float, bent: bool, room: Room, mean: Array
+    step: Array,
+    t: Array,
+    share: Array,
+    ax: Array,
+    qx: Array,
+    after: Array,
+    drop: Array,
+    alive: Array,
 ) -> None:
-    """The gradient of e0 in mx, times a share, added to `mean`. With reach the survivors,
-    d e0 / d q(x) = reach (a - n - e(x+n)) and d e0 / d a(x) = reach q."""
-    child, left, _ = _table(rules, mx, mix, bent, room)
-    ax, own, qx, ex, per, reach = room
-    n, top, each = rules.widths, mx.size - 1, rules.per_year
-    for x in range(top):
-        per[x] *= per[x] * each[x]
-    for x in range(top):
-        per[x] *= share * reach[x] * (ax[x] - n[x] - ex[x + 1])
-    for x in range(top):
-        mean[x] += per[x]
-    for x in range(top if bent else min(2, top)):
-        mean[x] += (share * reach[x] * qx[x] + per[x] * mx[x] * mx[x]) * own[x]
-    if child != 0:
-        mean[0] += (share * reach[1] * qx[1] + per[1] * mx[1] * mx[1]) * child
-    mean[top] -= share * reach[top] * left * left
+    """From birth on. A death takes l dq/dm for each year, dq/dm = per^2 / n with q = m per; where
+    more would die than enter, all of them die, 1 / m years after they do."""
+    n, per_year = rules.widths, rules.per_year
+    for lane in range(LANES):
+        alive[lane] = 1.0
+    for x in range(ax.shape[0] - 1):
+        for lane in range(LANES):
+            m = start[x, lane] + t[lane] * step[x, lane]
+            full = ax[x, lane] * m > 1
+            per = n[x] / (n[x] * m if full else 1 + (n[x] - ax[x, lane]) * m)
+            q = 1.0 if full else m * per
+            qx[x, lane] = q
+            after[x, lane] = n[x] - (per if full else ax[x, lane])
+            drop[x, lane] = share[lane] * alive[lane] * per * per * per_year[x]
+            alive[lane] -= alive[lane] * q
+
+
+@side_by_side
+def _close(
+    start: Array, step: Array, t: Array, share: Array, alive: Array, left: Array, mean: Array
+) -> None:
+    """The open group: 1 / m years are left, nobody knows how many where nobody died."""
+    for lane in range(LANES):
+        m = start[lane] + t[lane] * step[lane]
+        left[lane] = np.nan if m == 0 else 1 / m
+        mean[lane] -= share[lane] * alive[lane] * left[lane] * left[lane]
+
+
+@side_by_side
+def _up(
+    rules: Rules, qx: Array, after: Array, drop: Array, mean: Array, left: Array, ahead: Array
+) -> None:
+    """From the top: a death takes the years after it in the group and those left at its end. Where
+    all die, e0 falls by l / m^2, for they live 1 / m years."""
+    n = rules.widths
+    for x in range(qx.shape[0] - 2, -1, -1):
+        if x < 2:
+            ahead[x] = left
+        for lane in range(LANES):
+            taken = n[x] if qx[x, lane] >= 1 else after[x, lane] + left[lane]
+            mean[x, lane] -= drop[x, lane] * taken
+            lived = n[x] - after[x, lane] * qx[x, lane]
+            left[lane] = lived + (left[lane] - left[lane] * qx[x, lane])
+
+
+@fused
+def _add_bend(lines: Lines, group: int, places: Places) -> None:
+    """The part of m0 that goes by way of ax: a year more is lived by l q, and moves q by m^2 of
+    what m itself does; none where ax is at its bound."""
+    for lane in range(LANES):
+        m = lines.mx[group, lane] + places.t[lane] * lines.mx_step[group, lane]
+        q, before = places.qx[group, lane], 0.0 if group == 0 else places.qx[0, lane]
+        taken = places.after[group, lane] + places.ahead[group, lane]
+        lived = places.share[lane] * (1 - before) * q - places.drop[group, lane] * m * m * taken
+        places.mean[0, lane] += 0.0 if q >= 1 else lived * places.bend[group, lane]

@@ -16,6 +16,8 @@ from engine.stages.separation import (
 )
 from engine.stages.smoothing import adult_groups
 
+PIECES = 3  # of the rule with most of them
+
 
 class Rules(NamedTuple):
     """Ages and rules of one chain. The open group is closed by 1 / m, the others at half their
@@ -48,24 +50,27 @@ def rules(grid: AgeGrid, settings: Settings) -> Rules:
 
 
 def _pieces(rule: tuple[Pieces, Pieces]) -> Array:
-    return np.array(rule, float)
+    """Of one length, so that a choice among them is no loop."""
+    more = ((np.inf, 0.0, 0.0),) * PIECES
+    return np.array([(*pieces, *more)[:PIECES] for pieces in rule], float)
 
 
 @compiled
 def by_infant_rate(
-    pieces: Array, m0: float, weight: Array, ratio: Array, t: int, r: int
+    pieces: Array, m0: float, women: float, men: float, times_women: float, times_men: float
 ) -> tuple[float, float]:
-    """Mean of the sexes' rules and its derivative in m0; weight, ratio [tile, row, 2]."""
-    value, bend = 0.0, 0.0
-    for sex in range(2):
-        share, times = weight[t, r, sex], ratio[t, r, sex]
-        if share == 0:
-            continue
-        rate, intercept, slope = times * m0, pieces[sex, 0, 1], pieces[sex, 0, 2]
-        for k in range(1, pieces.shape[1]):
-            above = rate >= pieces[sex, k, 0]
-            other, steeper = pieces[sex, k, 1], pieces[sex, k, 2]
-            intercept, slope = other if above else intercept, steeper if above else slope
-        value += share * (intercept + slope * rate)
-        bend += share * times * slope
-    return value, bend
+    """Mean of the sexes' rules and its derivative in m0; their weights and the ratios of their
+    rates to m0."""
+    first, bend = _of_sex(pieces[0], times_women * m0)
+    second, slope = _of_sex(pieces[1], times_men * m0)
+    return women * first + men * second, women * times_women * bend + men * times_men * slope
+
+
+@compiled
+def _of_sex(pieces: Array, rate: float) -> tuple[float, float]:
+    intercept, slope = pieces[0, 1], pieces[0, 2]
+    for k in range(1, PIECES):
+        above = rate >= pieces[k, 0]
+        intercept = pieces[k, 1] if above else intercept
+        slope = pieces[k, 2] if above else slope
+    return intercept + slope * rate, slope

@@ -174,11 +174,17 @@ def _place(n: Array, mx: Array, ax: Array) -> None:
 def _by_rule(rules: Rules, weight: Array, ratio: Array, t: int, mx: Array, ax: Array) -> None:
     for r in range(mx.shape[0]):
         if rules.first.shape[1]:
-            early = by_infant_rate(rules.first, mx[r, 0], weight, ratio, t, r)[0]
+            early = _mixed(rules.first, mx[r, 0], weight, ratio, t, r)
             ax[r, 0] = 1 / mx[r, 0] if early * mx[r, 0] > 1 else early
         if rules.child.shape[1]:
-            early = by_infant_rate(rules.child, mx[r, 0], weight, ratio, t, r)[0]
+            early = _mixed(rules.child, mx[r, 0], weight, ratio, t, r)
             ax[r, 1] = 1 / mx[r, 1] if early * mx[r, 1] > 1 else early
+
+
+@compiled
+def _mixed(pieces: Array, m0: float, weight: Array, ratio: Array, t: int, r: int) -> float:
+    w, times = weight[t, r], ratio[t, r]
+    return by_infant_rate(pieces, m0, w[0], w[1], times[0], times[1])[0]
 
 
 @compiled
