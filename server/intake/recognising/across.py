@@ -86,42 +86,32 @@ def _kinds(text: str, taken: dict[str, str]) -> Iterator[tuple[str, str]]:
                 yield kind, value
 
 
-def across(columns: Sequence[str], numeric: Callable[[str], bool], also: str = "") -> Across | None:
+def across(columns: Sequence[str], numeric: Callable[[str], bool]) -> Across | None:
     """The columns that stand for ages, sexes or years; None where a table is long.
 
-    At least two of them, all of the same kinds, that differ in each kind. `numeric` says whether a
-    column holds numbers; `also` is a count to be taken where no heading says which.
+    At least two of them, all of the same kinds. `numeric` says whether a column holds numbers.
     """
+    return next(iter(every_across(columns, numeric)), None)
+
+
+def every_across(columns: Sequence[str], numeric: Callable[[str], bool]) -> tuple[Across, ...]:
+    """Every way to read some columns as standing for the same kinds, that of most columns first."""
     read = {
         column: [found for found in meanings(column) if set(found) - {"number"}]
         for column in dict.fromkeys(columns)
         if column and not is_rate(column) and numeric(column)
     }
-    signatures = {tuple(found) for each in read.values() for found in each}
-    best: Across | None = None
-    for signature in sorted(signatures, key=lambda fields: (len(fields), fields)):
+    ways = []
+    for signature in {tuple(found) for each in read.values() for found in each}:
         taken = tuple(
             (column, *found.values())
             for column, each in read.items()
             if (found := next((one for one in each if tuple(one) == signature), None))
         )
-        alike = any(len({folded(row[at]) for row in taken}) < 2 for at in _varying(signature))
-        if len(taken) < 2 or alike or _repeats(taken):
-            continue
-        if best is None or len(taken) > len(best.columns):
-            best = Across(signature, taken)
-    return best
-
-
-def _varying(signature: tuple[str, ...]) -> list[int]:
-    """Places of the kinds of which at least one must differ between the headings."""
-    return [at for at, kind in enumerate(signature, 1) if len(signature) == 1 and kind != "number"]
-
-
-def _repeats(taken: tuple[tuple[str, ...], ...]) -> bool:
-    """Whether two headings say the same, so that they must mean something else."""
-    said = [tuple(map(folded, row[1:])) for row in taken]
-    return len(set(said)) < len(said)
+        said = {tuple(map(folded, row[1:])) for row in taken}
+        if len(taken) > 1 and len(said) == len(taken):  # two that say the same mean something else
+            ways.append(Across(signature, taken))
+    return tuple(sorted(ways, key=lambda way: (-len(way.columns), len(way.fields), way.fields)))
 
 
 def number_of(texts: Sequence[str]) -> str:

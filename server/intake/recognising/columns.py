@@ -1,13 +1,14 @@
 """Which column is which, by its heading first and by its values second."""
 
-import re
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from server.intake.areas import is_code
 from server.intake.labels import read_age, read_sex, read_status, read_year
 from server.intake.mapping import COLUMNS, NUMBERS, ROLES, Mapping, numbers_of
 from server.intake.reading import Reading
+from server.intake.recognising.across import Across, every_across, number_of
+from server.intake.recognising.marks import is_number
 from server.intake.recognising.names import is_count, is_rate, named, suggests
 
 BY_HEADING = "its heading says so"
@@ -17,6 +18,7 @@ ONLY_NUMBER = "it is the only column of numbers left"
 RATE = "a rate: rates are worked out from the counts"
 TAKEN = "another column was taken for the same"
 NOT_NEEDED = "nothing in this kind of file needs it"
+ACROSS = "its heading stands for an age, a sex or a year"
 OTHER_COUNT = "another kind of count than this file was handed in for"
 UNKNOWN = "neither its heading nor its values are known"
 
@@ -37,19 +39,32 @@ class Recognition:
     columns: tuple[Recognised, ...]  # in the order of the file
 
 
+MOSTLY = 0.6  # share of the first values of a column of counts that are numbers: some are withheld
+
+
 def _all(test: Callable[[str], object]) -> Callable[[tuple[str, ...]], bool]:
     return lambda values: bool(values) and all(test(value) for value in values)
 
 
-def _number(value: str) -> bool:
-    return re.fullmatch(r"\d+(\.\d+)?", value) is not None
+def _numbers(values: tuple[str, ...]) -> bool:
+    """Whether a column holds counts: gaps and signs for withheld ones may stand among them."""
+    filled = [value for value in values if value]
+    return bool(filled) and sum(map(is_number, filled)) >= MOSTLY * len(filled)
+
+
+def _ages(values: tuple[str, ...]) -> bool:
+    """Labels of ages; plain numbers only where they count up from 0."""
+    if not values or not all(map(read_age, values)):
+        return False
+    plain = [value for value in values if is_number(value)]
+    return len(plain) < len(values) or plain == [str(age) for age in range(len(values))]
 
 
 _LOOKS = {
     "year": _all(read_year),
     "sex": _all(read_sex),
     "status": _all(read_status),
-    "age": _all(lambda value: read_age(value) and not _number(value)),
+    "age": _ages,
 }
 
 
@@ -60,37 +75,76 @@ def fields_of(role: str) -> tuple[str, ...]:
     return tuple(field for field in COLUMNS if field not in skipped)
 
 
-def recognise(reading: Reading, role: str) -> Recognition:
+def recognise(reading: Reading, role: str, wide: tuple[str, ...] | None = None) -> Recognition:
     """Take each column for a field of the mapping, or for none, and say why.
 
+    `wide` names the fields that stand in headings, () where none do, None to find out.
     Raises: ValueError where there is no such role.
     """
     if role not in ROLES:
         raise ValueError(f"no role {role!r}; a file is one of {', '.join(ROLES)}")
-    fields = fields_of(role)
-    found: dict[str, Recognised] = {}
-    for column in dict.fromkeys(reading.columns):
-        if known := _by_heading(column, fields, reading.values(column)):
-            found[column] = known
-    found = _once_each(found)
+    stands = _across(reading, role, wide)
+    found = {column: Recognised(column, "", "likely", ACROSS) for column, *_ in stands.columns}
+    fields = tuple(field for field in fields_of(role) if field not in stands.fields)
+    names = [column for column in dict.fromkeys(reading.columns) if column]
+    rest = [column for column in names if column not in found]
+    said = {column: _by_heading(column, fields, reading.values(column)) for column in rest}
+    found |= _once_each({column: known for column, known in said.items() if known})
     _names_are_no_codes(reading, found)
-    for column in dict.fromkeys(reading.columns):
-        if column not in found and (rest := _by_values(column, reading, fields, found)):
-            found[column] = rest
-    _last_number(reading, role, found)
-    columns = tuple(
-        found.get(column) or _unused(column, fields) for column in dict.fromkeys(reading.columns)
-    )
+    for column in rest:
+        if column not in found and (known := _by_values(column, reading, fields, found)):
+            found[column] = known
+    if not stands.columns:
+        _last_number(reading, role, found)
+    columns = tuple(found.get(column) or _unused(column, fields) for column in names)
     taken = {known.field: known.column for known in columns if known.field}
-    return Recognition(Mapping(**taken), columns)  # type: ignore[arg-type]
+    form = replace(
+        reading.form,
+        across=stands.fields,
+        across_columns=stands.columns,
+        across_number=_counted(reading, role, stands),
+    )
+    return Recognition(Mapping(**taken, form=form), columns)  # type: ignore[arg-type]
+
+
+def ways(reading: Reading) -> tuple[Across, ...]:
+    """Every way in which headings of the file can stand for ages, sexes and years."""
+    return every_across(reading.columns, lambda column: _numbers(reading.values(column)))
+
+
+def _across(reading: Reading, role: str, wide: tuple[str, ...] | None) -> Across:
+    """The headings that stand for something and hold the counts of this role."""
+    found = ways(reading)
+    if wide is not None:
+        found = tuple(way for way in found if way.fields == wide)
+    if not found:
+        return Across((), ())
+    way = found[0]
+    if "number" not in way.fields:
+        return way
+    place = way.fields.index("number") + 1
+    return Across(way.fields, tuple(row for row in way.columns if row[place] in numbers_of(role)))
+
+
+def _counted(reading: Reading, role: str, stands: Across) -> str:
+    """What the cells of a wide table count, where no heading says it; empty where nothing does."""
+    if not stands.columns or "number" in stands.fields:
+        return ""
+    if len(ROLES[role]) == 1:
+        return ROLES[role][0]
+    titles = (" ".join(row) for row in reversed(reading.top))
+    said = number_of((reading.form.sheet, *titles, reading.name))
+    return said if said in numbers_of(role) else ""
 
 
 def _by_heading(column: str, fields: tuple[str, ...], values: tuple[str, ...]) -> Recognised | None:
     """By its whole heading, or by a name within it where its values do not speak against that."""
     if field := named(column, fields):
         return Recognised(column, field, "sure", BY_HEADING)
-    field = "" if is_rate(column) else suggests(column, fields)
-    fits = _LOOKS.get(field, _all(_number))(values) or not values
+    if is_rate(column):
+        return Recognised(column, "rate", "likely", IN_HEADING) if "rate" in fields else None
+    field = suggests(column, fields)
+    fits = _LOOKS.get(field, _numbers)(values) or not values
     return Recognised(column, field, "likely", IN_HEADING) if field and fits else None
 
 
@@ -115,7 +169,7 @@ def _last_number(reading: Reading, role: str, found: dict[str, Recognised]) -> N
         if column not in found
         and not is_rate(column)
         and not named(column, COLUMNS)  # it says itself that it is something else
-        and _all(_number)(reading.values(column))
+        and _numbers(reading.values(column))
     ]
     called = [column for column in numbers if is_count(column)] or numbers
     if len(wanted) == 1 and len(called) == 1:

@@ -95,7 +95,7 @@ _COUNT = {plain(name) for name in COUNTS.split("|")}
 def named(heading: str, fields: Iterable[str]) -> str:
     """The field that a heading is the usual name of; empty where there is none."""
     said = plain(heading)
-    return next((field for field in fields if said in _LISTED[field]), "")
+    return next((field for field in fields if said in _LISTED.get(field, ())), "")
 
 
 def suggests(heading: str, fields: Iterable[str]) -> str:
@@ -109,7 +109,9 @@ def suggests(heading: str, fields: Iterable[str]) -> str:
     for field in fields:
         if field in _ALONE or (field == "year" and _NOT.search(said)):
             continue
-        found = max((len(name) for name in _LISTED[field] if f" {name} " in said), default=0)
+        found = max(
+            (len(name) for name in _LISTED.get(field, ()) if f" {name} " in said), default=0
+        )
         best = (field, found) if found > max(best[1], 2) else best
     return best[0]
 

@@ -5,7 +5,7 @@ from dataclasses import fields, replace
 
 import pytest
 
-from server.intake.mapping import COLUMNS, Mapping
+from server.intake.mapping import COLUMNS, Form, Mapping
 from server.intake.reading import read
 from server.intake.recognising import columns
 from server.intake.recognising.columns import Recognised, recognise
@@ -20,9 +20,10 @@ def test_a_usual_heading_is_enough() -> None:
         read(b"Year;Sex;Age group;Deaths;Person-years;Rate per 1000\n1974;male;0;3;9;1\n", "a"),
         "counts",
     )
-    assert recognition.mapping == Mapping(
+    assert replace(recognition.mapping, form=Form()) == Mapping(
         year="Year", sex="Sex", age="Age group", deaths="Deaths", population="Person-years"
     )
+    assert recognition.mapping.form.delimiter == ";"
     assert recognition.columns[0] == Recognised("Year", "year", "sure", columns.BY_HEADING)
     assert recognition.columns[-1] == Recognised("Rate per 1000", "", "not used", columns.RATE)
 
@@ -75,6 +76,60 @@ def test_a_region_that_is_no_code_is_a_name() -> None:
     codes = recognised(b"region,year,sex,age,deaths\nN1,1974,f,0,3\n", "deaths")
     names = recognised(b"region,year,sex,age,deaths\nNorth Shore,1974,f,0,3\n", "deaths")
     assert (codes["region"].field, names["region"].field) == ("area", "area_name")
+
+
+WIDE = b"""area;year;sex;0;1-4;5+;Total
+N1;2014;f;3;1;90;94
+N1;2014;m;4;1;95;100
+"""
+
+
+def test_ages_in_headings_are_taken_for_ages() -> None:
+    found = recognise(read(WIDE, "a.csv"), "deaths")
+    form = found.mapping.form
+    assert (form.across, form.across_number) == (("age",), "deaths")
+    assert form.across_columns == (("0", "0"), ("1-4", "1-4"), ("5+", "5+"), ("Total", "Total"))
+    assert (found.mapping.area, found.mapping.year, found.mapping.sex) == ("area", "year", "sex")
+    assert found.mapping.age == found.mapping.deaths == ""
+    assert found.columns[3] == Recognised("0", "", "likely", columns.ACROSS)
+
+
+def test_a_wide_table_can_be_said_to_be_long() -> None:
+    found = recognise(read(WIDE, "a.csv"), "deaths", ())
+    assert found.mapping.form.across == found.mapping.form.across_columns == ()
+
+
+def test_only_the_counts_of_the_role_are_taken_from_headings() -> None:
+    content = b"year,age,deaths_m,deaths_f,pop_m,pop_f\n2014,0,3,4,900,901\n"
+    form = recognise(read(content, "a.csv"), "deaths").mapping.form
+    assert {column for column, *_ in form.across_columns} == {"deaths_m", "deaths_f"}
+    both = recognise(read(content, "a.csv"), "counts").mapping.form
+    assert len(both.across_columns) == 4
+
+
+def test_what_the_cells_count_is_not_guessed_without_a_word_for_it() -> None:
+    content = b"age,2014,2015\n0,3,4\n1+,5,6\n"
+    assert recognise(read(content, "a.csv"), "counts").mapping.form.across_number == ""
+    named = recognise(read(content, "population of the isle.csv"), "counts").mapping.form
+    assert named.across_number == "population"
+
+
+def test_columns_of_other_languages_are_known() -> None:
+    content = b"Jahr;Geschlecht;Altersgruppe;Kreis;Gestorbene\n2014;m;0-4;Nord 1;3\n"
+    found = recognise(read(content, "a.csv"), "deaths").mapping
+    assert (found.year, found.sex, found.age) == ("Jahr", "Geschlecht", "Altersgruppe")
+    assert (found.area_name, found.deaths) == ("Kreis", "Gestorbene")
+
+
+def test_a_usual_name_goes_before_one_within_a_heading() -> None:
+    found = recognised(b"year,sex,age,total deaths all causes,deaths\n1974,f,0,4,3\n", "deaths")
+    assert found["deaths"].field == "deaths"
+    assert found["total deaths all causes"].why == columns.TAKEN
+
+
+def test_counts_may_be_withheld_here_and_there() -> None:
+    content = b"year,sex,age,registered deaths 2014\n1974,f,0,3\n1974,f,1,..\n1974,f,2,4\n"
+    assert recognised(content, "deaths")["registered deaths 2014"].field == "deaths"
 
 
 def test_an_unknown_role_is_refused() -> None:
