@@ -86,6 +86,8 @@ class AgeGrid:
 
     def common(self, other: "AgeGrid") -> "AgeGrid":
         """The finest grid into which both can be summed exactly."""
+        if other == self:
+            return self
         return AgeGrid(tuple(start for start in self.starts if start in other.starts))
 
     def regroup(self, counts: Array, to: "AgeGrid") -> Array:
