@@ -14,7 +14,9 @@ from server.intake.areas import code_of, is_code
 from server.intake.labels import (
     AGE_NOT_STATED,
     ALL_AGES,
+    NOT_STATED,
     Age,
+    not_stated,
     read_age,
     read_sex,
     read_status,
@@ -25,6 +27,9 @@ from server.intake.sheets import Labels, Sheet
 
 UNREADABLE = -1
 TOTAL = -2  # age of a row that is a total over the ages
+UNSTATED = AGE_NOT_STATED.start  # age of a row that says that its age is not known
+SEX_UNSTATED = len(SEXES)  # and likewise its sex; its area is the number after the last
+AREA_UNSTATED = "?"  # no area has this code
 Ints = NDArray[np.int64]
 Flags = NDArray[np.bool_]
 Whole = TypeVar("Whole", int, Ints)
@@ -36,10 +41,10 @@ class Cells:
     """One number for each row and matter; UNREADABLE where the text could not be read."""
 
     sheet: Sheet
-    area: Ints  # into the codes of the whole upload
-    sex: Ints  # into SEXES
+    area: Ints  # into the codes of the whole upload; as many as there are: not stated
+    sex: Ints  # into SEXES, or SEX_UNSTATED
     year: Ints
-    start: Ints  # first age of the group, or TOTAL
+    start: Ints  # first age of the group, or TOTAL, or UNSTATED
     end: Ints  # last age, UNREADABLE where the label does not say
     open: Flags
     status: Ints  # 0 final, 1 provisional
@@ -56,13 +61,13 @@ class Cells:
 
 
 def place_of(area: Whole, sex: Whole, year: Whole) -> Whole:
-    return (area * len(SEXES) + sex) * YEARS + year
+    return (area * (SEX_UNSTATED + 1) + sex) * YEARS + year
 
 
 def parts_of(place: Whole) -> tuple[Whole, Whole, Whole]:
     """Area, sex and year of a place, or of each of many; areas and sexes by their numbers."""
     rest, year = divmod(place, YEARS)
-    area, sex = divmod(rest, len(SEXES))
+    area, sex = divmod(rest, SEX_UNSTATED + 1)
     return area, sex, year
 
 
@@ -74,15 +79,31 @@ def sexes_of(persons: Whole) -> tuple[Whole, Whole]:
 def codes_of(sheet: Sheet) -> list[str]:
     """The code of each distinct text that tells the area, the one of a blank last.
 
-    '' where the text can be no code, or where another name gives the same code.
+    '' where the text can be no code, or where another name gives the same code; AREA_UNSTATED where
+    the text, or the name beside a code, says that the area is not known.
     """
     if labels := sheet.labels.get("area"):
-        return labels.read(lambda text: text if is_code(text) else "", "")
+        nameless = _nameless(sheet, labels)
+        return [
+            AREA_UNSTATED if not_stated(text) or text in nameless else text if is_code(text) else ""
+            for text in labels.texts
+        ] + [""]
     if labels := sheet.labels.get("area_name"):
-        made = [code_of(text) for text in labels.texts]
+        made = [AREA_UNSTATED if not_stated(text) else code_of(text) for text in labels.texts]
         times = Counter(made)
+        times[AREA_UNSTATED] = 1  # several words may say so
         return [code if times[code] == 1 else "" for code in made] + [""]
     return [only_code(sheet.mapping)]
+
+
+def _nameless(sheet: Sheet, areas: Labels) -> set[str]:
+    """Codes that the column of names calls unknown: 99, not stated."""
+    names = sheet.labels.get("area_name")
+    if names is None:
+        return set()
+    unknown = np.flatnonzero([not_stated(text) for text in names.texts])
+    found = np.unique(areas.codes[np.isin(names.codes, unknown)])
+    return {areas.texts[code] for code in found[found >= 0].tolist()}
 
 
 def only_code(mapping: Mapping) -> str:
@@ -108,7 +129,7 @@ def names_of(sheet: Sheet, codes: list[str]) -> dict[str, list[str]]:
     found: dict[str, list[str]] = {}
     for area, name in zip(*divmod(pairs, names_before), strict=True):
         code = codes[area - 1]
-        if code and name:
+        if code not in ("", AREA_UNSTATED) and name:
             found.setdefault(code, []).append(names.texts[name - 1])
     return found
 
@@ -116,12 +137,13 @@ def names_of(sheet: Sheet, codes: list[str]) -> dict[str, list[str]]:
 def cells(sheet: Sheet, codes: Sequence[str]) -> Cells:
     """Read the labels of a sheet; `codes` are the area codes of the whole upload, in order."""
     mapping, labels = sheet.mapping, sheet.labels
-    known = {code: place for place, code in enumerate(codes)}
+    known = {code: place for place, code in enumerate((*codes, AREA_UNSTATED))}
     ages = _ages(labels.get("age"))
+    sexes = {code: place for place, code in enumerate((*SEXES, NOT_STATED))}
 
     def sex(text: str) -> int:
         found = read_sex(text, mapping.sex_codes)
-        return SEXES.index(found) if found in SEXES else UNREADABLE
+        return sexes.get(found or "", UNREADABLE)
 
     def year(text: str) -> int:
         return read_year(text) or UNREADABLE
@@ -160,12 +182,7 @@ def _ages(labels: Labels | None) -> list[Age]:
     unreadable = Age(UNREADABLE)
     if labels is None:
         return [Age(0, open=True)]
-
-    def meaning(text: str) -> Age:
-        age = read_age(text)
-        return unreadable if age is None or age is AGE_NOT_STATED else age
-
-    return labels.read(meaning, unreadable)
+    return labels.read(lambda text: read_age(text) or unreadable, unreadable)
 
 
 def _spread(read: list[int], labels: Labels | None, rows: int) -> Ints:

@@ -8,25 +8,14 @@ import numpy as np
 
 from engine.ages import AgeGrid, Array
 from engine.panel import SEXES
-from server.intake.cells import Ints, parts_of, place_of, sexes_of
+from server.intake.cells import SEX_UNSTATED, Flags, Ints, parts_of, place_of, sexes_of
+from server.intake.labels import NOT_STATED
 from server.intake.mapping import WITHOUT_AGE
 from server.intake.problems import Value
-from server.intake.schedules import Block
+from server.intake.schedules import Aside, Block
 from server.intake.standing import Standing
 
 Line = tuple[Block, int]  # a block and which of its lines
-
-
-@dataclass(frozen=True, slots=True)
-class AgeTotal:
-    """A row of the file that is a total over the ages."""
-
-    measure: str
-    file: str
-    column: str
-    place: int
-    value: float
-    row: int
 
 
 @dataclass(frozen=True, slots=True)
@@ -49,7 +38,8 @@ class Ledger:
     spoiled: Ints  # places with errors; what is missing there is not missed
     unplaced: bool  # rows exist whose area, sex or year is not known, or files that were not read
     elsewhere: bool  # the edition that stands has parts of the whole that are not handed in here
-    age_totals: tuple[AgeTotal, ...]
+    age_totals: tuple[Aside, ...]
+    ageless: tuple[Aside, ...]  # counts of unknown age
     standing: Standing | None = None  # None: nothing is known of what stands
 
     @cached_property
@@ -69,6 +59,16 @@ class Ledger:
             places.update((place, (block, line)) for line, place in enumerate(block.place.tolist()))
         return found
 
+    @cached_property
+    def of_no_age(self) -> dict[str, dict[int, float]]:
+        """Counts of unknown age, by measure and place."""
+        return _by_place(self.ageless)
+
+    @cached_property
+    def at_all_ages(self) -> dict[str, dict[int, float]]:
+        """Totals over the ages as delivered, by measure and place."""
+        return _by_place(self.age_totals)
+
     def places(self, measure: str) -> Ints:
         """All places that have the measure, in order."""
         none = np.zeros(0, np.int64)
@@ -79,7 +79,24 @@ class Ledger:
     def named(self, place: int) -> dict[str, Value]:
         """Area, sex and year of a place, as values of a fault."""
         area, sex, year = parts_of(place)
-        return {"area": self.codes[area], "sex": SEXES[sex], "year": str(year)}
+        return {**self.named_area(area), "sex": (*SEXES, NOT_STATED)[sex], "year": str(year)}
+
+    def named_area(self, area: int) -> dict[str, Value]:
+        return {"area": (*self.codes, NOT_STATED)[area]}
+
+    def states(self, places: Ints) -> Flags:
+        """Whether a place says of which area and sex its counts are."""
+        area, sex, _ = parts_of(places)
+        return np.asarray((area < len(self.codes)) & (sex < SEX_UNSTATED))
+
+    def is_total(self, places: Ints, measure: str) -> Flags:
+        """Whether what stands there is in other lines too: persons beside women and men, the whole
+        beside any part."""
+        area, _, _ = parts_of(places)
+        areas = parts_of(self.places(measure))[0]
+        beside = self.whole >= 0 and bool((areas != self.whole).any())
+        twice = np.isin(places, self.both_sexes(measure))
+        return np.asarray(twice | (beside & (area == self.whole)))
 
     def both_sexes(self, measure: str) -> Ints:
         """Places of persons where women and men have the measure too."""
@@ -91,8 +108,8 @@ class Ledger:
         both: Ints = persons[np.isin(women, places) & np.isin(men, places)]
         return both
 
-    def parts(self, place: int, measure: str) -> tuple[list[Line], list[str]]:
-        """Lines of the parts at a place of the whole, and codes of the parts that have none."""
+    def parts(self, place: int, measure: str) -> tuple[list[int], list[str]]:
+        """Places of the parts at a place of the whole, and codes of the parts that have none."""
         _, sex, year = parts_of(place)
         lines = self.lines.get(measure, {})
         found, missing = [], []
@@ -101,7 +118,7 @@ class Ledger:
                 continue
             at = place_of(area, sex, year)
             if at in lines:
-                found.append(lines[at])
+                found.append(at)
             else:
                 missing.append(code)
         return found, missing
@@ -153,6 +170,14 @@ class Ledger:
                 yield block
             else:
                 yield block.pick(~np.isin(block.place, np.concatenate(paired)))
+
+
+def _by_place(asides: tuple[Aside, ...]) -> dict[str, dict[int, float]]:
+    found: dict[str, dict[int, float]] = {}
+    for aside in asides:
+        known = zip(aside.place.tolist(), aside.values.tolist(), strict=True)
+        found.setdefault(aside.measure, {}).update(known)
+    return found
 
 
 def _where(blocks: tuple[Block, ...]) -> Ints:

@@ -2,17 +2,19 @@
 
 from collections import defaultdict
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import repeat
 
 import numpy as np
 
 from engine.panel import SEXES
+from server.intake.areas_over_time import told
 from server.intake.cells import (
+    AREA_UNSTATED,
     TOTAL,
     UNREADABLE,
+    UNSTATED,
     Cells,
-    Flags,
     Ints,
     cells,
     codes_of,
@@ -20,16 +22,18 @@ from server.intake.cells import (
     parts_of,
     whole_code,
 )
-from server.intake.checks import OF_LEDGER, ages, columns, fields, files
+from server.intake.checks import OF_LEDGER, ages, columns, fields, files, totals, unstated
 from server.intake.checks import areas as area_checks
 from server.intake.layout import layout
-from server.intake.ledger import AgeTotal, Ledger
-from server.intake.mapping import ROLES, Mapping
+from server.intake.ledger import Ledger
+from server.intake.mapping import EVERY_ROLE, LISTS, ROLES, Mapping
 from server.intake.problems import Problem, errors_of
-from server.intake.schedules import MEASURES, Block, blocks, ordered
+from server.intake.schedules import Aside, Block, asides, blocks, ordered
+from server.intake.sharing import Unstated, settle
 from server.intake.sheets import Sheet, load
 from server.intake.standing import Standing
-from server.store.records import Area, Key, Vector
+from server.intake.successions import NOTHING, Successions
+from server.store.records import Area, Break, Key, Vector
 
 READER = "reader-3"  # changes whenever the same bytes and mapping would give other schedules
 
@@ -38,7 +42,7 @@ READER = "reader-3"  # changes whenever the same bytes and mapping would give ot
 class Handed:
     """A file as handed in, and how it is to be read."""
 
-    role: str  # a key of mapping.ROLES
+    role: str  # one of mapping.EVERY_ROLE
     name: str
     content: bytes
     mapping: Mapping
@@ -54,6 +58,9 @@ class Parsed:
     row_count: int  # rows read, headings and blank lines not counted
     sound_count: int  # rows without an error
     whole: str  # code of the area that is summed from the others; empty where none is
+    successions: Successions = NOTHING  # not yet applied: the edition before has old codes too
+    breaks: tuple[Break, ...] = ()
+    unstated: tuple[Unstated, ...] = ()  # what became of counts that do not state all
 
     @property
     def errors(self) -> tuple[Problem, ...]:
@@ -70,7 +77,8 @@ class _Sorted:
     blocks: list[Block]
     spoiled: Ints  # places with errors
     unplaced: bool
-    age_totals: list[AgeTotal]
+    age_totals: list[Aside]
+    ageless: list[Aside]  # counts of unknown age
 
 
 def parse(handed: Sequence[Handed], standing: Standing | None = None) -> Parsed:
@@ -80,9 +88,25 @@ def parse(handed: Sequence[Handed], standing: Standing | None = None) -> Parsed:
     that is not known, and not asked. The schedules do not depend on it.
     Raises: ValueError where a role is unknown or comes twice.
     """
-    roles = [file.role for file in handed]
-    if len(set(roles)) != len(roles) or not set(roles) <= set(ROLES):
-        raise ValueError(f"an upload has one file of each role of {', '.join(ROLES)}; got {roles}")
+    roles, known = [file.role for file in handed], ", ".join(EVERY_ROLE)
+    if len(set(roles)) != len(roles) or not set(roles) <= set(EVERY_ROLE):
+        raise ValueError(f"an upload has one file of each role of {known}; got {roles}")
+    counts = _counts([file for file in handed if file.role not in LISTS], standing)
+    lists = [file for file in handed if file.role in LISTS]
+    grids = {key: cell.grid for key, cell in counts.cells.items()}
+    said = told(lists, counts.areas, grids, standing)
+    return replace(
+        counts,
+        successions=said.successions,
+        breaks=said.breaks,
+        problems=(*counts.problems, *said.problems),
+        row_count=counts.row_count + said.rows,
+        sound_count=counts.sound_count + said.sound,
+    )
+
+
+def _counts(handed: Sequence[Handed], standing: Standing | None) -> Parsed:
+    """The files of counts, as `parse`."""
     problems: list[Problem] = []
     sheets: list[Sheet] = []
     unread = 0
@@ -113,15 +137,19 @@ def parse(handed: Sequence[Handed], standing: Standing | None = None) -> Parsed:
         unplaced=len(sheets) < len(handed) or any(part.unplaced for part in done),
         standing=standing,
     )
+    settled = settle(ledger)
+    problems += [problem for check in totals.CHECKS for problem in check.problems(ledger)]
+    problems += [problem for check in unstated.CHECKS for problem in check.problems(settled)]
     for check in OF_LEDGER:
-        problems += check.problems(ledger)
+        problems += check.problems(settled.ledger)
     return Parsed(
-        cells=_vectors(ledger.without_totals()),
+        cells=_vectors(settled.ledger.without_totals()),
         areas=areas,
         problems=tuple(problems),
         row_count=unread + sum(part.rows for part in done),
         sound_count=sum(part.sound for part in done),
         whole=_whole(handed),
+        unstated=settled.account,
     )
 
 
@@ -137,7 +165,7 @@ def _areas(
     found: set[str] = set()
     for sheet in sheets:
         codes = codes_of(sheet)
-        found |= set(codes) - {""}
+        found |= set(codes) - {"", AREA_UNSTATED}
         for code, given in names_of(sheet, codes).items():
             names[code].update(dict.fromkeys(given))
     whole = _whole(handed)
@@ -191,24 +219,9 @@ def _sorted(read: Cells) -> _Sorted:
         blocks=list(blocks(rows, spoiled)),
         spoiled=spoiled,
         unplaced=not read.placed.all(),
-        age_totals=_age_totals(read, read.placed & sound & (read.start == TOTAL)),
+        age_totals=list(asides(read, read.placed & sound & (read.start == TOTAL))),
+        ageless=list(asides(read, read.placed & sound & (read.start == UNSTATED))),
     )
-
-
-def _age_totals(read: Cells, rows: Flags) -> list[AgeTotal]:
-    sheet = read.sheet
-    return [
-        AgeTotal(
-            measure=MEASURES[field],
-            file=sheet.name,
-            column=sheet.mapping.column(field),
-            place=int(read.place[row]),
-            value=float(numbers.values[row]),
-            row=int(sheet.row[row]),
-        )
-        for field, numbers in sheet.numbers.items()
-        for row in np.flatnonzero(rows)
-    ]
 
 
 def _ledger(
@@ -230,6 +243,7 @@ def _ledger(
         elsewhere=elsewhere,
         unplaced=unplaced,
         age_totals=tuple(total for part in done for total in part.age_totals),
+        ageless=tuple(aside for part in done for aside in part.ageless),
         standing=standing,
     )
 
@@ -237,7 +251,7 @@ def _ledger(
 def _vectors(ledger: Ledger) -> dict[Key, Vector]:
     """The schedules as the store keeps them, in the order of their keys within each measure."""
     found: dict[Key, Vector] = {}
-    for block in ledger.on_common_grids():
+    for block in (one for all_ in ledger.on_common_grids() for one in all_.with_counted()):
         area, sex, year = parts_of(block.place)
         keys = map(
             Key,

@@ -1,10 +1,11 @@
 """What the checks of an upload found, as it is kept beside the upload."""
 
 import json
-from dataclasses import dataclass
+from dataclasses import asdict, dataclass
 
 from server.intake.parsing import Parsed
 from server.intake.problems import Problem
+from server.intake.sharing import Unstated
 
 
 @dataclass(frozen=True, slots=True)
@@ -23,6 +24,7 @@ class Report:
     whole: str  # code of the area that is summed from the others; empty where none is
     persons: bool  # persons are summed from women and men
     delivered: tuple[str, ...]  # codes of areas kept as delivered
+    unstated: tuple[Unstated, ...] = ()  # what became of counts that do not state all
 
     @classmethod
     def of(cls, parsed: Parsed) -> "Report":
@@ -40,12 +42,13 @@ class Report:
             areas=tuple(area.code for area in parsed.areas),
             sexes=tuple(sorted({key.sex for key in keys})),
             periods=tuple(sorted({key.period for key in keys})),
-            measures=tuple(sorted({key.measure for key in keys})),
+            measures=tuple(sorted({key.measure for key in keys} - {"counted_deaths"})),
             provisional=tuple(sorted(provisional)),
             grids=tuple(grid.labels for grid in grids),
             whole=parsed.whole if parsed.whole not in delivered else "",
             persons=any(sex == "f" and (*place, "m") in sexes for *place, sex in sexes),
             delivered=delivered,
+            unstated=parsed.unstated,
         )
 
     @property
@@ -59,6 +62,7 @@ class Report:
     def to_json(self) -> str:
         stored = {name: getattr(self, name) for name in self.__slots__}
         stored["problems"] = [problem.to_json() for problem in self.problems]
+        stored["unstated"] = [asdict(year) for year in self.unstated]
         return json.dumps(stored, sort_keys=True, ensure_ascii=False)
 
     @classmethod
@@ -67,4 +71,5 @@ class Report:
         lists = {name: tuple(value) for name, value in stored.items() if isinstance(value, list)}
         lists["problems"] = tuple(Problem.from_json(problem) for problem in stored["problems"])
         lists["grids"] = tuple(tuple(labels) for labels in stored["grids"])
+        lists["unstated"] = tuple(Unstated(**year) for year in stored.get("unstated", ()))
         return cls(**(stored | lists))

@@ -8,6 +8,7 @@ import numpy as np
 from engine.ages import AgeGrid, Array
 from server.intake.cells import Cells, Flags, Ints
 from server.intake.mapping import NUMBERS
+from server.intake.mapping import Mapping as FileMapping
 from server.intake.problems import Fault, Value
 
 MEASURES = {field: field for field in NUMBERS} | {"population": "person_years"}
@@ -41,6 +42,21 @@ class Ordered:
 
 
 @dataclass(frozen=True, slots=True)
+class Rule:
+    """What is to be done with counts that do not state their sex, age or area."""
+
+    chosen: Mapping[str, str]  # "spread" or "left_out", by what is not stated
+    most: float  # per cent of a year's counts of an area that may be spread
+
+    @classmethod
+    def of(cls, mapping: FileMapping) -> "Rule":
+        return cls(dict(mapping.unstated), mapping.most_unstated)
+
+
+AS_THEY_ARE = Rule({}, 0)
+
+
+@dataclass(frozen=True, slots=True)
 class Block:
     """Vectors of one measure that share a grid, by place; all from one file."""
 
@@ -52,18 +68,23 @@ class Block:
     provisional: Flags  # [line]
     values: Array  # [line, age]
     row: Ints  # [line, age], row in the file
+    rule: Rule = AS_THEY_ARE
+    counted: Array | None = None  # of them as counted and stated, where some were shared out
+
+    @property
+    def stated(self) -> Array:
+        """Counts as they were delivered, [line, age]."""
+        return self.values if self.counted is None else self.counted
 
     def fault(self, rows: Ints, values: Mapping[str, Value]) -> Fault:
-        """A fault in these rows of the file."""
-        rows = np.atleast_1d(rows)
-        return Fault(
-            column=self.column,
-            file=self.file,
-            row=int(rows.min()),
-            last_row=int(rows.max()),
-            rows=rows.size,
-            values=values,
-        )
+        return _fault(self, rows, values)
+
+    def with_counted(self) -> Iterator["Block"]:
+        """Itself, and how many were counted and stated where that is fewer."""
+        yield self
+        if self.counted is not None:
+            fewer = self.pick((self.counted != self.values).any(axis=-1))
+            yield replace(fewer, measure="counted_deaths", values=fewer.stated, counted=None)
 
     def pick(self, lines: Flags | Ints) -> "Block":
         return replace(
@@ -72,6 +93,7 @@ class Block:
             provisional=self.provisional[lines],
             values=self.values[lines],
             row=self.row[lines],
+            counted=None if self.counted is None else self.counted[lines],
         )
 
     def regroup(self, to: AgeGrid) -> "Block":
@@ -80,8 +102,55 @@ class Block:
             return self
         starts = [self.grid.position(start) for start in to.starts]
         return replace(
-            self, grid=to, values=self.grid.regroup(self.values, to), row=self.row[:, starts]
+            self,
+            grid=to,
+            values=self.grid.regroup(self.values, to),
+            row=self.row[:, starts],
+            counted=None if self.counted is None else self.grid.regroup(self.counted, to),
         )
+
+
+@dataclass(frozen=True, slots=True)
+class Aside:
+    """Numbers of one measure that are of no one age: totals over the ages, or of unknown age."""
+
+    measure: str
+    file: str
+    column: str
+    place: Ints  # [line]
+    provisional: Flags
+    values: Array
+    row: Ints
+    rule: Rule
+
+    def once(self) -> "Aside":
+        """The first line of each place; a second is a fault."""
+        return self.pick(np.append(True, self.place[1:] != self.place[:-1])[: len(self.place)])
+
+    def pick(self, lines: Flags | Ints) -> "Aside":
+        return replace(
+            self,
+            place=self.place[lines],
+            provisional=self.provisional[lines],
+            values=self.values[lines],
+            row=self.row[lines],
+        )
+
+    def fault(self, rows: Ints, values: Mapping[str, Value]) -> Fault:
+        return _fault(self, rows, values)
+
+
+def _fault(source: Block | Aside, rows: Ints, values: Mapping[str, Value]) -> Fault:
+    """A fault in these rows of the file."""
+    rows = np.atleast_1d(rows)
+    return Fault(
+        column=source.column,
+        file=source.file,
+        row=int(rows.min()),
+        last_row=int(rows.max()),
+        rows=rows.size,
+        values=values,
+    )
 
 
 def ordered(cells: Cells, sound: Flags) -> Ordered:
@@ -122,6 +191,7 @@ def blocks(rows: Ordered, spoiled: Ints) -> Iterator[Block]:
     if not len(take):
         return
     sheet, begins = rows.cells.sheet, np.flatnonzero(rows.first[kept])
+    rule = Rule.of(sheet.mapping)
     for starts, lines in _grids(start, begins):
         cell = begins[lines][:, None] + np.arange(len(starts))
         taken = take[cell]
@@ -136,7 +206,29 @@ def blocks(rows: Ordered, spoiled: Ints) -> Iterator[Block]:
                 provisional=provisional,
                 values=np.round(numbers.values[taken], DECIMALS) + 0.0,
                 row=sheet.row[taken],
+                rule=rule,
             )
+
+
+def asides(cells: Cells, rows: Flags) -> Iterator[Aside]:
+    """The numbers of some rows that are of no one age, in the order of their places."""
+    take = np.flatnonzero(rows)
+    if not len(take):
+        return
+    sheet, place = cells.sheet, cells.place[take]
+    order = np.argsort(place, kind="stable")
+    take, place = take[order], place[order]
+    for field, numbers in sheet.numbers.items():
+        yield Aside(
+            measure=MEASURES[field],
+            file=sheet.name,
+            column=sheet.mapping.column(field),
+            place=place,
+            provisional=cells.status[take] == 1,
+            values=np.round(numbers.values[take], DECIMALS) + 0.0,
+            row=sheet.row[take],
+            rule=Rule.of(sheet.mapping),
+        )
 
 
 def _grids(start: Ints, begins: Ints) -> Iterator[tuple[tuple[int, ...], Ints]]:

@@ -108,8 +108,7 @@ CHECKS: tuple[RowCheck[Cells], ...] = (
         meaning="An age group cannot be read.",
         found="“{text}”",
         expected="an age group such as 0, 1–4, 85+",
-        remedy="Write the group by its ages; deaths of unknown age must be shared out or left out "
-        "before the upload.",
+        remedy="Write the group by its ages; where the age is not known, write: not stated.",
         mark=_unreadable("age", "start"),
     ),
     RowCheck(

@@ -110,9 +110,9 @@ def _first_year(line: Line) -> bool:
 
 def _fractions(ledger: Ledger) -> Iterator[Fault]:
     for block in ledger.of("deaths"):
-        broken = block.values != np.round(block.values)
+        broken = block.stated != np.round(block.stated)
         if broken.any():
-            yield block.fault(block.row[broken], {"text": figure(block.values[broken][0])})
+            yield block.fault(block.row[broken], {"text": figure(block.stated[broken][0])})
 
 
 def _changing_ages(ledger: Ledger) -> Iterator[Fault]:

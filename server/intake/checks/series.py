@@ -101,8 +101,8 @@ def _nobody(ledger: Ledger) -> Iterator[Fault]:
 
 def _years_missing(ledger: Ledger) -> Iterator[Fault]:
     """Years without deaths between years with them, by area and sex."""
-    totals = np.array([total.place for total in ledger.age_totals], np.int64)
-    known = np.unique(np.concatenate([ledger.places("deaths"), ledger.spoiled, totals]))
+    totals = [total.place for total in ledger.age_totals]
+    known = np.unique(np.concatenate([ledger.places("deaths"), ledger.spoiled, *totals]))
     if ledger.unplaced or len(known) < 2:
         return
     area, sex, year = parts_of(known)

@@ -4,9 +4,10 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from server.intake.cells import sexes_of
+from server.intake.cells import YEARS, parts_of, place_of, sexes_of
 from server.intake.checks.check import Check
-from server.intake.ledger import AgeTotal, Ledger, Line, common_grid, summed
+from server.intake.labels import NOT_STATED
+from server.intake.ledger import Ledger, common_grid, summed
 from server.intake.problems import Fault, Value
 from server.intake.schedules import MEASURES
 
@@ -16,29 +17,50 @@ def _slack(measure: str, parts: int) -> float:
     return 0.5 * (parts + 1) if measure == "person_years" else 0.5
 
 
-def _differs(ledger: Ledger, place: int, measure: str, parts: list[Line]) -> Iterator[Fault]:
-    """The age at which a delivered total is furthest from the sum of its parts, if it is off."""
-    block, line = ledger.lines[measure][place]
-    grid = common_grid([(block, line), *parts])
-    total = block.grid.regroup(block.values[line], grid)
-    parts_sum = summed(parts, grid)
+def _differs(ledger: Ledger, place: int, measure: str, parts: list[int]) -> Iterator[Fault]:
+    """The age at which a delivered total is furthest from the sum of its parts, if it is off; what
+    does not state its sex, age or area is among the parts."""
+    lines, ageless = ledger.lines[measure], ledger.of_no_age.get(measure, {})
+    block, line = lines[place]
+    whole = [part for part in parts if part in lines]
+    without = {part: ledger.at_all_ages.get(measure, {}).get(part) for part in parts}
+    ages = [lines[part] for part in whole]
+    grid = common_grid([(block, line), *ages])
+    total, parts_sum = block.grid.regroup(block.values[line], grid), summed(ages, grid)
+    labels = grid.labels
+    if len(whole) < len(parts):  # some come without ages
+        bare = [without[part] or ageless.get(part, 0.0) for part in parts if part not in lines]
+        known = [ageless.get(part, 0.0) for part in whole]
+        total = np.array([total.sum() + ageless.get(place, 0.0)])
+        parts_sum = np.array([parts_sum.sum() + sum(bare) + sum(known)])
+        labels = ("all ages",)
+    elif place in ageless:
+        total = np.append(total, ageless[place])
+        parts_sum = np.append(parts_sum, sum(ageless.get(part, 0.0) for part in parts))
+        labels = (*labels, NOT_STATED)
     off = np.abs(total - parts_sum)
     if off.max() > _slack(measure, len(parts)):
         age = int(off.argmax())
-        row = block.row[line, block.grid.position(grid.starts[age])]
+        row = block.row[line, block.grid.position(grid.starts[age]) if age < len(grid) else 0]
         values: dict[str, Value] = {
-            "age": grid.labels[age],
+            "age": labels[age],
             "total": float(total[age]),
             "sum": float(parts_sum[age]),
         }
         yield block.fault(row, ledger.named(place) | values)
 
 
+def _known(ledger: Ledger, measure: str, place: int) -> list[int]:
+    """The place, if the file has anything of the measure there."""
+    kept = (ledger.lines, ledger.of_no_age, ledger.at_all_ages)
+    return [place] if any(place in by.get(measure, {}) for by in kept) else []
+
+
 def _persons(ledger: Ledger) -> Iterator[Fault]:
     for measure in MEASURES.values():
         for place in ledger.both_sexes(measure).tolist():
-            sexes = [ledger.lines[measure][sex] for sex in sexes_of(place)]
-            yield from _differs(ledger, place, measure, sexes)
+            unknown = _known(ledger, measure, place + YEARS)
+            yield from _differs(ledger, place, measure, [*sexes_of(place), *unknown])
 
 
 def _whole(ledger: Ledger) -> Iterator[Fault]:
@@ -48,7 +70,9 @@ def _whole(ledger: Ledger) -> Iterator[Fault]:
         for place in ledger.wholes(measure):
             parts, missing = ledger.parts(place, measure)
             if parts and not missing:
-                yield from _differs(ledger, place, measure, parts)
+                _, sex, year = parts_of(place)
+                unknown = _known(ledger, measure, place_of(len(ledger.codes), sex, year))
+                yield from _differs(ledger, place, measure, [*parts, *unknown])
 
 
 def _parts_missing(ledger: Ledger) -> Iterator[Fault]:
@@ -66,25 +90,25 @@ def _parts_missing(ledger: Ledger) -> Iterator[Fault]:
 
 def _all_ages(ledger: Ledger) -> Iterator[Fault]:
     for total in ledger.age_totals:
-        found = ledger.lines.get(total.measure, {}).get(total.place)
-        if found is None or found[0].file != total.file:
-            continue
-        block, line = found
-        ages = float(block.values[line].sum())
-        if abs(ages - total.value) > _slack(total.measure, len(block.grid)):
-            values = {**ledger.named(total.place), "total": total.value, "sum": ages}
-            yield _fault(total, values)
+        ages, ageless = ledger.lines.get(total.measure, {}), ledger.of_no_age.get(total.measure, {})
+        for line, place in enumerate(total.place.tolist()):
+            found = ages.get(place)
+            if found is None or found[0].file != total.file:
+                continue
+            block, at = found
+            together = float(block.values[at].sum()) + ageless.get(place, 0.0)
+            given = float(total.values[line])
+            if abs(together - given) > _slack(total.measure, len(block.grid)):
+                values = {**ledger.named(place), "total": given, "sum": together}
+                yield total.fault(total.row[line], values)
 
 
 def _only_all_ages(ledger: Ledger) -> Iterator[Fault]:
     for total in ledger.age_totals:
-        if total.place in ledger.spoiled or total.place in ledger.lines.get(total.measure, {}):
-            continue
-        yield _fault(total, ledger.named(total.place))
-
-
-def _fault(total: AgeTotal, values: dict[str, Value]) -> Fault:
-    return Fault(column=total.column, file=total.file, row=total.row, values=values)
+        known = np.concatenate([ledger.spoiled, ledger.places(total.measure)])
+        bare = ledger.states(total.place) & ~np.isin(total.place, known)
+        for line in np.flatnonzero(bare).tolist():
+            yield total.fault(total.row[line], ledger.named(int(total.place[line])))
 
 
 CHECKS: tuple[Check[Ledger], ...] = (

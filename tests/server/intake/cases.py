@@ -39,6 +39,10 @@ def _persons(extra: int) -> list[dict[str, object]]:
 
 WHOLE = rows(("isle",), times=2)
 ONE = OLDEST[:1]
+UNKNOWN_SEX = [{**row, "sex": "not stated", "deaths": 1, "population": 0} for row in WOMEN]
+UNKNOWN_AGE = [{**WOMEN[0], "age": "not stated", "deaths": 9, "population": 0}]
+UNKNOWN_AREA = [{**row, "area": "not stated", "deaths": 1, "population": 0} for row in WOMEN]
+MANY = setting(UNKNOWN_AGE, UNKNOWN_AGE, deaths=400)
 ALL_AGES = [{**WOMEN[0], "age": "all ages", "deaths": 2_000, "population": 68_259}]
 
 CASES = (
@@ -58,7 +62,7 @@ CASES = (
     Case("unknown_delivered", _mapped(delivered=("isle",))),
     Case("unreadable_year", _set(WOMEN, year="12")),
     Case("unknown_sex", _set(WOMEN, sex="F/M")),
-    Case("unreadable_age", _set(ONE, age="not stated")),
+    Case("unreadable_age", _set(ONE, age="the oldest")),
     Case("unreadable_area_code", _set(NORTH_2012, area="north east")),
     Case("missing_area_name", lambda: [_named("", area="")]),
     Case("area_names_share_code", lambda: [_named("Nörth", area="", area_name="name")]),
@@ -89,6 +93,13 @@ CASES = (
     ),
     Case("all_ages_differ", lambda: [counts(SOUND + ALL_AGES)]),
     Case("only_all_ages", lambda: [counts(without(SOUND, WOMEN) + ALL_AGES)]),
+    Case("sex_not_stated", lambda: [counts(SOUND + UNKNOWN_SEX)]),
+    Case("age_not_stated", lambda: [counts(SOUND + UNKNOWN_AGE)]),
+    Case("area_not_stated", lambda: [counts(SOUND + UNKNOWN_AREA)]),
+    Case("too_many_not_stated", lambda: [_unstated(MANY, age="spread")]),
+    Case("many_left_out", lambda: [_unstated(MANY, age="left_out")]),
+    Case("nothing_to_share_by", lambda: [_unstated(_only_unstated(), age="spread")]),
+    Case("not_stated_twice", lambda: [_unstated(UNKNOWN_AGE * 2, age="spread")]),
     Case("jump_of_deaths", _set(ONE, deaths=1_010)),
     Case("jump_of_population", _set(WOMEN[3:4], population=41_000)),
     Case("infant_deaths_exceed_births", lambda: [counts(SOUND), births(46)]),
@@ -105,6 +116,16 @@ CASES = (
         "deaths_exceed_population",
     ),
 )
+
+
+def _unstated(table: list[dict[str, object]], **chosen: str) -> Handed:
+    """These rows beside the sound ones, and what is to be done with what they do not state."""
+    return counts(SOUND + table, unstated=tuple(chosen.items()))
+
+
+def _only_unstated() -> list[dict[str, object]]:
+    """Deaths of a further year, all of them of unknown age."""
+    return [{**UNKNOWN_AGE[0], "year": 2015}]
 
 
 def _named(name: str, **mapping: object) -> Handed:
