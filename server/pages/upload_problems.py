@@ -9,6 +9,8 @@ from server.intake.report import Report
 from server.pages.contents_tables import Listing
 from server.pages.page import Frame, Notice, Page
 from server.pages.upload import locator
+from server.pages.upload_effect import Effect, effect
+from server.results.preview import Preview
 from server.sentences import methods, reading
 from server.sentences import uploads as say
 from server.sentences.numbers import whole
@@ -29,7 +31,7 @@ class Making:
     possible: bool
     why: str
     note_needed: bool
-    may_replace: bool  # there is an edition whose content could be dropped
+    effect: Effect | None  # None: it cannot be told, since the upload is not sound
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -45,8 +47,8 @@ class UploadProblemsPage(Page):
     making: Making | None  # None: it is an edition already
 
 
-def build(session: Session, upload_id: int) -> UploadProblemsPage:
-    """`upload_id` must have been checked."""
+def build(session: Session, upload_id: int, shown: Preview | None = None) -> UploadProblemsPage:
+    """`upload_id` must have been checked; `shown` is what it would change."""
     upload = uploads.find(session, upload_id)
     report = Report.from_json(upload.report)
     collection = collections.find(session, upload.collection)
@@ -71,7 +73,7 @@ def build(session: Session, upload_id: int) -> UploadProblemsPage:
         warnings=_listing("warnings", _("Wants a second look"), report.warnings),
         counted=_("Rows are counted as in the file, the heading being row 1."),
         holds=_holds(report) if report.periods else (),
-        making=None if upload.edition else _making(session, upload, report, number),
+        making=None if upload.edition else _making(session, upload, report, shown),
     )
 
 
@@ -159,7 +161,7 @@ def _holds(report: Report) -> tuple[tuple[str, str], ...]:
     )
 
 
-def _making(session: Session, upload: Upload, report: Report, standing: int) -> Making:
+def _making(session: Session, upload: Upload, report: Report, shown: Preview | None) -> Making:
     all_ = editions.listing(session, upload.collection)
     number = all_[0].number + 1 if all_ else 1
     files = {file.name: file.role for file in upload.files}
@@ -171,5 +173,5 @@ def _making(session: Session, upload: Upload, report: Report, standing: int) -> 
         possible=not report.errors,
         why=say.why_not(len(report.errors), number),
         note_needed=bool(report.warnings),
-        may_replace=bool(standing),
+        effect=effect(shown, report, number) if shown else None,
     )

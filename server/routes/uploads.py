@@ -13,17 +13,18 @@ from server.actions.correct_upload import correct_upload
 from server.actions.create_collection import create_collection
 from server.actions.discard_upload import discard_upload
 from server.actions.map_upload import map_upload
+from server.actions.preview_upload import preview_upload
 from server.actions.receive_upload import receive_upload
 from server.intake.mapping import ROLES
 from server.pages import upload as upload_page
 from server.pages import upload_checking, upload_new, upload_problems, upload_reading
 from server.pages import uploads as uploads_page
+from server.results.preview import asked, taking_of
 from server.routes import plain
 from server.routes.asking import Elsewhere, SessionDep, ViewerDep, needs
 from server.routes.forms import FormDep, file, text
 from server.routes.reading_form import basis, mappings
 from server.store import uploads
-from server.store.records import ALL_OF_IT, Taking
 from server.store.errors import Missing
 from server.store.records import Job
 from server.web.problem import Refusal
@@ -32,6 +33,7 @@ from server.web.render import READ, asked_block, redirect, render
 router = APIRouter()
 MAY_READ = [needs(Right.READ)]
 MAY_UPLOAD = [needs(Right.UPLOAD)]
+CHOICES = ("area", "years", "gives_way")  # of what is taken of an upload
 A_MOMENT = 2.0  # seconds a reader waits for the checks without being told how far they are
 
 
@@ -152,13 +154,16 @@ def _job(request: Request, upload: int, number: str) -> Job:
 
 @router.api_route("/uploads/{upload:int}/problems", methods=READ, dependencies=MAY_READ)
 @router.api_route("/uploads/{upload:int}/problems.{twin}", methods=READ, dependencies=MAY_READ)
-def show_problems(request: Request, session: SessionDep, upload: int, twin: str = "") -> Response:
+def show_problems(
+    request: Request, session: SessionDep, viewer: ViewerDep, upload: int, twin: str = ""
+) -> Response:
     if not uploads.find(session, upload).report:
         raise Elsewhere(f"/uploads/{upload}/reading")
-    page = upload_problems.build(session, upload)
     if not twin:
-        plain.keys(request)
-        return render(request, page)
+        taking = taking_of(request.query_params.multi_items())
+        shown = preview_upload(session, upload_id=upload, taking=taking, by=viewer)
+        return render(request, upload_problems.build(session, upload, shown))
+    page = upload_problems.build(session, upload)
     return plain.show(request, lambda: page, tag_parts=(page,), twin=twin)
 
 
@@ -187,13 +192,19 @@ def correct_file(
 
 @router.post("/uploads/{upload:int}/commit", dependencies=[needs(Right.COMMIT)])
 def commit(session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep) -> Response:
+    """Make the edition; where choices were made that were not shown yet, show what they change."""
+    sent = [(key, value) for key, value in form.multi_items() if isinstance(value, str)]
+    taking = taking_of((key, value) for key, value in sent if key in CHOICES)
+    if text(form, "do") == "look" or asked(taking) != text(form, "shown"):
+        place = f"/uploads/{upload}/problems?{asked(taking)}".rstrip("?")
+        return redirect(f"{place}#effect", status=303)
     edition = commit_upload(
         session,
         upload_id=upload,
         note=text(form, "note"),
         by=viewer,
         now=dt.datetime.now(dt.UTC),
-        taking=Taking(gives_way="all") if text(form, "replace") == "yes" else ALL_OF_IT,
+        taking=taking,
     )
     collection = uploads.find(session, upload).collection
     return redirect(f"/c/{collection}/{edition.number}/contents", status=303)

@@ -156,7 +156,9 @@ def test_an_upload_may_replace_all_that_stood(blank: TestClient) -> None:
     committed(blank, counts_csv(), code="salt")
     place = draft(blank, counts_csv(years=(2003,)), collection="salt")
     blank.post(f"{place}/reading", data=AREAS)
-    blank.post(f"{place}/commit", data={"note": "only 2003", "replace": "yes"})
+    blank.post(
+        f"{place}/commit", data={"note": "2003", "gives_way": "all", "shown": "gives_way=all"}
+    )
     assert "the one year 2003" in contents(blank, "salt")
 
 

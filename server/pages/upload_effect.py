@@ -1,0 +1,77 @@
+"""What the edition to be made of an upload would change, and the choices that decide it."""
+
+import math
+from dataclasses import asdict, dataclass
+
+from server.exports.table import Cell, Column, Gap, GapKind, Row, Table
+from server.intake.report import Report
+from server.pages.contents_tables import Listing
+from server.results.changes import Yearly
+from server.results.preview import Preview, asked
+from server.sentences import taking as say
+from server.sentences.pieces import Sentence, phrase
+from server.sentences.text import _
+
+Options = tuple[tuple[str, str], ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Effect:
+    """`areas`, `years` and `gives_way` are what is chosen; the options are empty where there is
+    nothing to choose."""
+
+    said: tuple[Sentence, ...]
+    years: Listing  # totals before and after
+    area_options: Options
+    areas: tuple[str, ...]
+    periods: str  # as written into the form
+    options: Options
+    gives_way: str
+    asked: str  # the choices as they stand in the address: what was shown before the button
+
+
+def effect(shown: Preview, report: Report, number: int) -> Effect:
+    """`number` is that of the edition to be made."""
+    if shown.refusal is not None:
+        said: tuple[Sentence, ...] = (phrase(_(shown.refusal.text, **shown.refusal.values)),)
+    else:
+        said = (
+            say.would_change(number, shown.base, asdict(shown.cells)),
+            say.settled(shown.settled, "final"),
+            say.settled(shown.unsettled, "provisional"),
+        )
+    drops = shown.gives_way
+    taking = shown.taking
+    return Effect(
+        said=tuple(sentence for sentence in said if sentence),
+        years=Listing((_years(shown.years, "effect"),) if shown.years else ()),
+        area_options=tuple((code, code) for code in report.areas) if len(report.areas) > 1 else (),
+        areas=taking.areas,
+        periods=", ".join(taking.periods),
+        options=say.choices(drops) if shown.base and drops else (),
+        gives_way=taking.gives_way,
+        asked=asked(taking),
+    )
+
+
+def _years(years: tuple[Yearly, ...], key: str) -> Table:
+    """Totals of every year that changes."""
+    heads = [Column("year", _("year"))]
+    for name, label in (("deaths", _("deaths")), ("person_years", _("person-years"))):
+        heads += [
+            Column(f"{name}_before", _("before"), decimals=0, span=label),
+            Column(f"{name}_after", _("after"), decimals=0, span=label),
+            Column(f"{name}_change", _("change"), decimals=0, signed=True, span=label),
+        ]
+    rows = (
+        Row((year.period, *_pair(year.deaths), *_pair(year.person_years)))
+        for year in reversed(years)
+    )
+    note = _("Totals over the whole collection, each person counted once.")
+    return Table(key, _("Deaths and person-years by year"), tuple(heads), tuple(rows), note)
+
+
+def _pair(pair: tuple[float, float]) -> tuple[Cell, ...]:
+    lacking = Gap(GapKind.NOT_AVAILABLE)
+    parts = (*pair, pair[1] - pair[0])
+    return tuple(one if math.isfinite(one) else lacking for one in parts)

@@ -1,0 +1,134 @@
+"""What an edition would change, before it is made."""
+
+import re
+from collections.abc import Mapping
+from dataclasses import dataclass
+from urllib.parse import urlencode
+
+from server.results.changes import Altered, Cells, Yearly, yearly
+from server.results.keys import BadValue, Items, Keys
+from server.sentences.text import _
+from server.store.errors import Refused
+from server.store.records import (
+    ALL_OF_IT,
+    GIVES_WAY,
+    Area,
+    Change,
+    Effect,
+    Key,
+    Taking,
+    Vector,
+)
+
+NOTHING = Effect()
+
+
+@dataclass(frozen=True, slots=True)
+class Preview:
+    """What the edition would do to the one that stands; `refusal` where it cannot be made."""
+
+    base: int  # 0: none stands
+    taking: Taking = ALL_OF_IT
+    refusal: Refused | None = None
+    schedules: Effect = NOTHING
+    cells: Effect = NOTHING  # counts of one age group; under another status alone: restated
+    years: tuple[Yearly, ...] = ()  # those that change
+    settled: tuple[str, ...] = ()  # years that become final with no number moving
+    unsettled: tuple[str, ...] = ()  # and provisional
+    gives_way: Mapping[str, int] | None = None  # schedules of the base that each choice drops
+
+
+def preview(
+    change: Change, base: Cells, base_areas: tuple[Area, ...], gives_way: Mapping[str, int]
+) -> Preview:
+    """The change beside all that its base holds."""
+    after = _after(change, base)
+    altered = [
+        one
+        for key in sorted(base.keys() | after.keys())
+        if (one := Altered(key, base.get(key), after.get(key))) and _differs(one)
+    ]
+    touched = {one.key.period for one in altered}
+    moved = {one.key.period for one in altered if one.kind != "marks"}
+    restated = [one for one in altered if one.restated and one.key.period not in moved]
+    both = tuple(
+        {key: cell for key, cell in side.items() if key.period in touched} for side in (base, after)
+    )
+    return Preview(
+        base=change.base,
+        taking=change.taking,
+        schedules=_counted(altered, ages=False),
+        cells=_counted(altered, ages=True),
+        years=yearly(both[0], both[1], change.areas, base_areas),
+        settled=_years(restated, "final"),
+        unsettled=_years(restated, "provisional"),
+        gives_way=gives_way,
+    )
+
+
+def _after(change: Change, base: Cells) -> dict[Key, Vector]:
+    if change.replace:
+        return dict(change.cells)
+    kept = {key: cell for key, cell in base.items() if key not in change.ended}
+    return kept | dict(change.cells)
+
+
+def _differs(one: Altered) -> bool:
+    return one.kind != "marks" or one.restated
+
+
+def _years(restated: list[Altered], status: str) -> tuple[str, ...]:
+    return tuple(
+        sorted({one.key.period for one in restated if one.now and one.now.status == status})
+    )
+
+
+def _counted(altered: list[Altered], *, ages: bool) -> Effect:
+    """How many schedules of each kind, or how many numbers of age groups in them."""
+    found = {"added": 0, "changed": 0, "restated": 0, "dropped": 0}
+    kinds = {"added": "added", "dropped": "dropped", "marks": "restated"}
+    for one in altered:
+        size = len((one.now or one.then).grid) if one.kind == "marks" else one.ages  # type: ignore[union-attr]
+        found[kinds.get(one.kind, "changed")] += size if ages else 1
+    return Effect(**found)
+
+
+def asked(taking: Taking) -> str:
+    """What is taken, as it stands in an address; empty where it is all of the upload."""
+    pairs = [("area", area) for area in taking.areas]
+    pairs += [("years", ", ".join(taking.periods))] if taking.periods else []
+    pairs += [("gives_way", taking.gives_way)] if taking != ALL_OF_IT else []
+    return urlencode(pairs)
+
+
+def taking_of(items: Items) -> Taking:
+    """The same read again, from an address or a form. UnknownKey, BadValue."""
+    keys = Keys(items, once=("years", "gives_way"), many=("area",))
+    areas = tuple(dict.fromkeys(keys.code("area", text) for text in keys.all("area")))
+    gives_way = keys.one("gives_way") or GIVES_WAY[0]
+    return Taking(
+        areas, years_of(keys.one("years")), keys.choice("gives_way", gives_way, GIVES_WAY)
+    )
+
+
+def years_of(text: str) -> tuple[str, ...]:
+    """Years as people write them. BadValue.
+
+    >>> years_of("2019, 2021-2023")
+    ('2019', '2021', '2022', '2023')
+    """
+    found: set[int] = set()
+    for part in re.split(r"[,;\s]+(?![-–])", text.strip()):
+        if not part:
+            continue
+        span = re.fullmatch(r"(\d{4})(?:\s*[-–]\s*(\d{4}))?", part)
+        if span is None:
+            raise BadValue(
+                _(
+                    "“{text}” are no years. Write years of four digits with commas between them,"
+                    " or the first and the last, such as 2019, 2021-2023.",
+                    text=text,
+                )
+            )
+        found |= set(range(int(span[1]), int(span[2] or span[1]) + 1))
+    return tuple(f"{year:04}" for year in sorted(found))

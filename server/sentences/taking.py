@@ -1,0 +1,128 @@
+"""What an edition changes, or would change, of the one it is built on."""
+
+from collections.abc import Mapping, Sequence
+
+from server.sentences import names
+from server.sentences.numbers import whole
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.text import _, n_
+
+Counts = Mapping[str, int]  # by added, changed, restated, dropped
+
+
+def would_change(number: int, base: int, cells: Counts) -> Sentence:
+    """The first line: how many counts edition `number` will change of edition `base` (0: none)."""
+    if not base:
+        return phrase(
+            _("Edition {number} will be the first, with {cells}."),
+            number=str(number),
+            cells=_counts(cells["added"]),
+        )
+    parts = _parts(cells)
+    if not parts:
+        return phrase(
+            _("Edition {number} will hold the same numbers as edition {base}."),
+            number=str(number),
+            base=str(base),
+        )
+    return phrase(
+        _("Edition {number} will change edition {base}: {parts}."),
+        number=str(number),
+        base=str(base),
+        parts=names.listed(parts),
+    )
+
+
+def _parts(cells: Counts) -> list[str]:
+    return [
+        text
+        for count, text in (
+            (cells["added"], _("{cells} new", cells=_counts(cells["added"]))),
+            (cells["changed"], _("{cells} changed", cells=_counts(cells["changed"]))),
+            (cells["dropped"], _("{cells} dropped", cells=_counts(cells["dropped"]))),
+        )
+        if count
+    ]
+
+
+def _counts(count: int) -> str:
+    return n_("one count", "{count} counts", count, count=whole(count))
+
+
+def settled(years: Sequence[str], status: str) -> Sentence:
+    """That years change their status with no number moving; empty where none does."""
+    if not years:
+        return ()
+    final = (
+        "{years} becomes final with no number moving.",
+        "{years} become final with no number moving.",
+    )
+    provisional = (
+        "{years} becomes provisional with no number moving.",
+        "{years} become provisional with no number moving.",
+    )
+    texts = final if status == "final" else provisional
+    return (Piece(n_(*texts, len(years), years=names.listed(list(years), most=12))),)
+
+
+def choices(drops: Mapping[str, int]) -> tuple[tuple[str, str], ...]:
+    """What may give way to the upload, and what each choice drops of what the files do not hold."""
+    texts = {
+        "cells": _("only the counts of the same area, sex, year and kind"),
+        "handed": _("all that it holds of an area and year taken"),
+        "years": _("all that it holds of a year taken, in every area"),
+        "areas": _("all that it holds of an area taken, in every year"),
+        "all": _("all of it"),
+    }
+    return tuple(
+        (key, _("{text}: {dropped}", text=text, dropped=_dropped(drops[key])))
+        for key, text in texts.items()
+    )
+
+
+def _dropped(count: int) -> str:
+    if not count:
+        return _("drops nothing beside")
+    return n_(
+        "drops one column of ages that the files do not hold",
+        "drops {count} columns of ages that the files do not hold",
+        count,
+        count=whole(count),
+    )
+
+
+def did(effect: Counts | None, took: str) -> str:
+    """What an edition did to the one before it, in the list of editions."""
+    parts = []
+    if effect:
+        parts = [
+            text
+            for count, text in (
+                (effect["added"], _("{count} new", count=whole(effect["added"]))),
+                (effect["changed"], _("{count} changed", count=whole(effect["changed"]))),
+                (
+                    effect["restated"],
+                    _("{count} under another status", count=whole(effect["restated"])),
+                ),
+                (effect["dropped"], _("{count} dropped", count=whole(effect["dropped"]))),
+            )
+            if count
+        ]
+    said = names.listed(parts) if parts else (_("nothing changed") if effect else _("not counted"))
+    return f"{said}; {took}" if took else said
+
+
+def taken(areas: Sequence[str], periods: Sequence[str], gives_way: str) -> str:
+    """What of the upload was taken and what gave way, where it is not the usual; else empty."""
+    parts = []
+    if areas:
+        parts.append(_("only {areas}", areas=names.listed(list(areas), most=6)))
+    if periods:
+        parts.append(_("only {years}", years=names.listed(list(periods), most=6)))
+    gave = {
+        "handed": _("in place of all of these areas and years"),
+        "years": _("in place of all of these years"),
+        "areas": _("in place of all of these areas"),
+        "all": _("in place of everything"),
+    }
+    return ", ".join([*parts, *([gave[gives_way]] if gives_way in gave else [])])
