@@ -83,9 +83,9 @@ def recognise(reading: Reading, role: str, wide: tuple[str, ...] | None = None) 
     """
     if role not in ROLES:
         raise ValueError(f"no role {role!r}; a file is one of {', '.join(ROLES)}")
-    stands = _across(reading, role, wide)
-    found = {column: Recognised(column, "", "likely", ACROSS) for column, *_ in stands.columns}
-    fields = tuple(field for field in fields_of(role) if field not in stands.fields)
+    across = stands(reading, role, wide)
+    found = {column: Recognised(column, "", "likely", ACROSS) for column, *_ in across.columns}
+    fields = tuple(field for field in fields_of(role) if field not in across.fields)
     names = [column for column in dict.fromkeys(reading.columns) if column]
     rest = [column for column in names if column not in found]
     said = {column: _by_heading(column, fields, reading.values(column)) for column in rest}
@@ -94,15 +94,15 @@ def recognise(reading: Reading, role: str, wide: tuple[str, ...] | None = None) 
     for column in rest:
         if column not in found and (known := _by_values(column, reading, fields, found)):
             found[column] = known
-    if not stands.columns:
+    if not across.columns:
         _last_number(reading, role, found)
     columns = tuple(found.get(column) or _unused(column, fields) for column in names)
     taken = {known.field: known.column for known in columns if known.field}
     form = replace(
         reading.form,
-        across=stands.fields,
-        across_columns=stands.columns,
-        across_number=_counted(reading, role, stands),
+        across=across.fields,
+        across_columns=across.columns,
+        across_number=counted(reading, role, across),
     )
     return Recognition(Mapping(**taken, form=form), columns)  # type: ignore[arg-type]
 
@@ -112,7 +112,7 @@ def ways(reading: Reading) -> tuple[Across, ...]:
     return every_across(reading.columns, lambda column: _numbers(reading.values(column)))
 
 
-def _across(reading: Reading, role: str, wide: tuple[str, ...] | None) -> Across:
+def stands(reading: Reading, role: str, wide: tuple[str, ...] | None) -> Across:
     """The headings that stand for something and hold the counts of this role."""
     found = ways(reading)
     if wide is not None:
@@ -126,9 +126,9 @@ def _across(reading: Reading, role: str, wide: tuple[str, ...] | None) -> Across
     return Across(way.fields, tuple(row for row in way.columns if row[place] in numbers_of(role)))
 
 
-def _counted(reading: Reading, role: str, stands: Across) -> str:
+def counted(reading: Reading, role: str, way: Across) -> str:
     """What the cells of a wide table count, where no heading says it; empty where nothing does."""
-    if not stands.columns or "number" in stands.fields:
+    if not way.columns or "number" in way.fields:
         return ""
     if len(ROLES[role]) == 1:
         return ROLES[role][0]

@@ -1,0 +1,80 @@
+"""What kind of file it is: the role it plays in an upload, told by what it holds."""
+
+from dataclasses import dataclass
+
+from server.intake.lists import NEEDED, field_of
+from server.intake.mapping import NUMBERS, ROLES, Form
+from server.intake.reading import Reading, proposed
+from server.intake.recognising.across import number_of
+from server.intake.recognising.columns import ways
+from server.intake.recognising.names import is_rate, named, suggests
+
+COLUMNS_SAY = "its columns say so"
+TITLE_SAYS = "its title, sheet or name says so"
+
+
+@dataclass(frozen=True, slots=True)
+class Kind:
+    """A role, empty where it cannot be told. The reason is a text of the catalogue."""
+
+    role: str
+    why: str = ""
+    sheet: str = ""  # the one that holds it, of a workbook with sheets of several kinds
+
+
+def kinds(content: bytes, name: str) -> tuple[Kind, ...]:
+    """What a file holds; several where the sheets of a workbook play different roles, each once.
+
+    Of other workbooks the sheet is to be chosen, and they are one file.
+    """
+    first = proposed(content, name, Form())
+    shown = [tab.name for tab in first.sheets if not tab.hidden and tab.rows > 1]
+    if len(shown) > 1:
+        parts = [(kind(proposed(content, name, Form(sheet=sheet))), sheet) for sheet in shown]
+        told = [(part, sheet) for part, sheet in parts if part.role]
+        if len(told) > 1 and len({part.role for part, _ in told}) == len(told):
+            return tuple(Kind(part.role, part.why, sheet) for part, sheet in told)
+    return (kind(first),)
+
+
+def kind(reading: Reading) -> Kind:
+    """By the columns, else by the words around the table."""
+    for role, needed in NEEDED.items():
+        if set(needed) <= {field_of(column, role) for column in reading.columns}:
+            return Kind(role, COLUMNS_SAY)
+    if role := _role(_counted(reading)):
+        return Kind(role, COLUMNS_SAY)
+    titles = (" ".join(row) for row in reversed(reading.top))
+    role = _role({number_of((reading.form.sheet, *titles, reading.name))})
+    return Kind(role, TITLE_SAYS) if role else Kind("")
+
+
+def _counted(reading: Reading) -> set[str]:
+    """The numbers that the headings name."""
+    columns = [column for column in reading.columns if column]
+    found = {_number(column) for column in columns}
+    for way in ways(reading)[:1]:
+        if "number" in way.fields:
+            place = way.fields.index("number") + 1
+            found |= {row[place] for row in way.columns}
+    return found - {""}
+
+
+def _number(column: str) -> str:
+    if is_rate(column):
+        return "rate"
+    counts = tuple(number for number in NUMBERS if number != "rate")
+    return named(column, counts) or suggests(column, counts)
+
+
+def _role(numbers: set[str]) -> str:
+    """The role of a file that holds these numbers. Births come with deaths of infants, and rates
+    beside counts are not needed."""
+    if "births" in numbers:
+        return "births"
+    if {"deaths", "population"} <= numbers:
+        return "counts"
+    found = [role for role in ("deaths", "population") if role in numbers]
+    if not found and "rate" in numbers and "rates" in ROLES:
+        return "rates"
+    return found[0] if found else ""
