@@ -3,6 +3,7 @@
 import argparse
 import datetime as dt
 import sys
+from dataclasses import asdict
 
 from server.accounts.viewer import LOCAL
 from server.actions.check_upload import check_upload
@@ -18,13 +19,15 @@ from server.cli.refusals import Declined
 from server.config import Config
 from server.intake.parsing import Handed, parse
 from server.intake.report import Report
+from server.results.preview import years_of
+from server.sentences import taking as taking_say
 from server.sentences import uploads as say
 from server.sentences.numbers import whole
 from server.sentences.text import _, n_
 from server.store import collections, editions
 from server.store.connect import Session
 from server.store.errors import Refused
-from server.store.records import Basis
+from server.store.records import GIVES_WAY, Basis, Taking
 
 
 def add(commands: Commands) -> None:
@@ -47,6 +50,8 @@ def add(commands: Commands) -> None:
             "    --population-date '1 July of each year' --source 'civil register' \\",
             "    --note '1999 to 2023, first delivery'",
             "ebbline hand-in --collection isle --counts 2024.csv --provisional 2024",
+            "ebbline hand-in --collection isle --counts all.csv --take-years 2023-2024 \\",
+            "    --gives-way years --note '2023 and 2024 anew, in every area'",
         ),
     )
     command.add_argument("--collection", metavar="CODE", help=_("code of the collection"))
@@ -54,9 +59,34 @@ def add(commands: Commands) -> None:
     command.add_argument("--owner", metavar=_("OFFICE"), help=_("data owner of a new collection"))
     command.add_argument("--check-only", action="store_true", help=_("check and write nothing"))
     add_note(command)
+    _add_taking(command)
     reading.add_files(command)
     reading.add_mapping(command)
     reading.add_basis(command)
+
+
+def _add_taking(command: argparse.ArgumentParser) -> None:
+    command.add_argument(
+        "--take-area", action="append", metavar="CODE", help=_("only this area; may be repeated")
+    )
+    command.add_argument(
+        "--take-years", metavar=_("YEARS"), default="", help=_("only these, such as 2019,2021-2023")
+    )
+    command.add_argument(
+        "--gives-way",
+        choices=GIVES_WAY,
+        default=GIVES_WAY[0],
+        help=_(
+            "what the edition before loses beside the counts handed in again: nothing (cells), all "
+            "of the areas and years taken (handed), all of the years, all of the areas, or all"
+        ),
+    )
+
+
+def _taking(asked: argparse.Namespace) -> Taking:
+    """What of the files is taken. BadValue where the years are none."""
+    areas = tuple(dict.fromkeys(asked.take_area or ()))
+    return Taking(areas, years_of(asked.take_years), asked.gives_way)
 
 
 def run(asked: argparse.Namespace, config: Config) -> int:
@@ -91,7 +121,7 @@ def _commit(
     *,
     limit: int,
 ) -> int:
-    now = dt.datetime.now(dt.UTC)
+    now, taking = dt.datetime.now(dt.UTC), _taking(asked)
     if not any(one.code == asked.collection for one in collections.all_collections(session)):
         basis = reading.basis(asked, None)
         _open(session, asked, report, now)
@@ -109,7 +139,14 @@ def _commit(
     map_upload(session, upload_id=upload.id, mappings=mappings, basis=basis, by=LOCAL, now=now)
     check_upload(session, upload_id=upload.id)
     try:
-        edition = commit_upload(session, upload_id=upload.id, note=asked.note, by=LOCAL, now=now)
+        edition = commit_upload(
+            session,
+            upload_id=upload.id,
+            note=asked.note,
+            by=LOCAL,
+            now=now,
+            taking=taking,
+        )
     except Refused:  # the files are still where they were: no draft of them is needed
         discard_upload(session, upload_id=upload.id, by=LOCAL)
         raise
@@ -121,6 +158,7 @@ def _commit(
             digest=edition.digest[:12],
         )
     )
+    print(taking_say.columns(edition.base, asdict(edition.effect) if edition.effect else None))
     return 0
 
 

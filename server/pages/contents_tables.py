@@ -1,7 +1,7 @@
 """The tables of a contents page: areas with their newest figures, and the collection's editions."""
 
 from collections.abc import Iterable
-from dataclasses import dataclass, field
+from dataclasses import asdict, dataclass, field
 
 from engine import settings as named
 from engine.indicators import INDICATORS
@@ -12,6 +12,7 @@ from server.results.questions import PopulationYear, PopulationYearQuestion, add
 from server.results.series import Series
 from server.sentences import contents as say
 from server.sentences import names
+from server.sentences import taking as taking_say
 from server.sentences.dates import day
 from server.sentences.text import _
 from server.store.records import Collection, Edition
@@ -84,6 +85,7 @@ def editions(collection: Collection, all_: Iterable[Edition], newest: int | None
             Column("made", _("made")),
             Column("by", _("by")),
             Column("note", _("what it says")),
+            Column("did", _("what it did to the one before")),
             Column("standing", _("standing")),
         ),
         tuple(
@@ -93,6 +95,7 @@ def editions(collection: Collection, all_: Iterable[Edition], newest: int | None
                     day(edition.made),
                     edition.by,
                     edition.note,
+                    did(edition),
                     say.standing(
                         stands=edition.number == newest,
                         withdrawn=edition.events[-1].at if edition.withdrawn else None,
@@ -102,5 +105,15 @@ def editions(collection: Collection, all_: Iterable[Edition], newest: int | None
             )
             for edition in all_
         ),
-        _("An edition never changes. Links keep showing the edition they name."),
+        _(
+            "An edition never changes. Links keep showing the edition they name. What it did is"
+            " counted in columns of ages: one count of an area, sex and year."
+        ),
     )
+
+
+def did(edition: Edition) -> str:
+    """What it did to the edition it was built on."""
+    taking = edition.taking
+    took = taking_say.taken(taking.areas, taking.periods, taking.gives_way)
+    return taking_say.did(asdict(edition.effect) if edition.effect else None, took)

@@ -93,23 +93,33 @@ def _dropped(count: int) -> str:
 
 def did(effect: Counts | None, took: str) -> str:
     """What an edition did to the one before it, in the list of editions."""
-    parts = []
-    if effect:
-        parts = [
-            text
-            for count, text in (
-                (effect["added"], _("{count} new", count=whole(effect["added"]))),
-                (effect["changed"], _("{count} changed", count=whole(effect["changed"]))),
-                (
-                    effect["restated"],
-                    _("{count} under another status", count=whole(effect["restated"])),
-                ),
-                (effect["dropped"], _("{count} dropped", count=whole(effect["dropped"]))),
-            )
-            if count
-        ]
-    said = names.listed(parts) if parts else (_("nothing changed") if effect else _("not counted"))
+    said = _did(effect) if effect else _("not counted")
     return f"{said}; {took}" if took else said
+
+
+def columns(base: int, effect: Counts | None) -> str:
+    """The same for a terminal, with what is counted."""
+    if not effect:
+        return ""
+    if not base:
+        return n_(
+            "It holds one column of ages.",
+            "It holds {count} columns of ages.",
+            effect["added"],
+            count=whole(effect["added"]),
+        )
+    return _("Of the columns of ages of edition {base}: {did}.", base=base, did=_did(effect))
+
+
+def _did(effect: Counts) -> str:
+    texts = {
+        "added": _("{count} new", count=whole(effect["added"])),
+        "changed": _("{count} changed", count=whole(effect["changed"])),
+        "restated": _("{count} under another status", count=whole(effect["restated"])),
+        "dropped": _("{count} dropped", count=whole(effect["dropped"])),
+    }
+    parts = [text for kind, text in texts.items() if effect[kind]]
+    return names.listed(parts) if parts else _("nothing changed")
 
 
 def taken(areas: Sequence[str], periods: Sequence[str], gives_way: str) -> str:

@@ -151,3 +151,18 @@ def test_a_pair_without_its_sign_is_refused(
     with pytest.raises(SystemExit, match="2"):
         ebbline("hand-in", "--counts", counts, "--area", "denmark")
     assert "“denmark” is not of the form A=B" in capsys.readouterr().err
+
+
+def test_some_years_in_place_of_all_that_stood(ebbline: Ebbline, counts: Path) -> None:
+    told = ("hand-in", "--collection", "salt", "--counts", counts)
+    assert "It holds 24 columns of ages." in ebbline(*told, *NEW).out
+    counts.write_bytes(counts_csv(["north"], times=2))
+    said = ebbline(*told, "--take-years", "2002", "--gives-way", "years")
+    assert said.code == 0, said.err
+    assert "Of the columns of ages of edition 1: 3 changed and 6 dropped." in said.out
+    listed = ebbline("editions", "--collection", "salt", "--as", "csv").out
+    assert "3 changed and 6 dropped; only 2002, in place of all of these years" in listed
+    wrong = ebbline(*told, "--take-years", "soon")
+    assert (wrong.code, "are no years" in wrong.err) == (2, True)
+    assert ebbline(*told, "--take-area", "atlantis").code == 2
+    assert ebbline("rebuild").code == 0
