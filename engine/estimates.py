@@ -1,5 +1,6 @@
 """A figure with its interval, and, where one is missing, the reason."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from enum import IntEnum
 from typing import Any
@@ -34,6 +35,7 @@ class Reason(IntEnum):
     TOO_FEW_DEATHS = 18  # fewer than the number needs
     NOT_DECOMPOSED = 19  # no exact share of the difference belongs to an age
     OPEN_AGE_TOO_LOW = 20  # the open group begins too low to be closed by its own death rate
+    ACROSS_A_BREAK = 21  # the years added up lie on both sides of a break
 
 
 @dataclass(frozen=True, slots=True)
@@ -50,6 +52,12 @@ class Estimate:
     def __getitem__(self, where: Any) -> "Estimate":
         """Part of the batch."""
         return Estimate(*(np.asarray(getattr(self, name)[where]) for name in self.__slots__))
+
+    @classmethod
+    def stack(cls, ones: "Sequence[Estimate]") -> "Estimate":
+        """Several as one batch, along a new first axis."""
+        parts = ([getattr(one, name) for one in ones] for name in cls.__slots__)
+        return cls(*(np.stack(part) for part in parts))
 
     def within(
         self, low: Array, high: Array, se: Array, why: Reason | NDArray[np.integer[Any]]

@@ -5,13 +5,12 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from server.accounts.viewer import Right, Viewer
-from server.actions import totals
 from server.actions.check_upload import handed
-from server.actions.taking import taken
+from server.actions.laid_over import Base, made_of
 from server.intake.parsing import READER, Parsed, parse
 from server.intake.problems import Problem
 from server.intake.report import Report
-from server.store import areas, editions, schedules, uploads
+from server.store import areas, breaks, editions, schedules, uploads
 from server.store.connect import Session, transaction
 from server.store.errors import Refused, Stale
 from server.store.records import (
@@ -19,7 +18,6 @@ from server.store.records import (
     Basis,
     Change,
     Edition,
-    Selection,
     Taking,
     Upload,
 )
@@ -99,30 +97,28 @@ def read(session: Session, upload: Upload) -> Parsed:
 
 
 def change_of(session: Session, sound: Sound, parsed: Parsed, taking: Taking) -> Change:
-    """What would be written. Raises: Refused, as `taken` and `totals.laid_over` do."""
+    """What would be written. Raises: Refused, as `made_of` does."""
     code = sound.upload.collection
     base = 0 if taking.gives_way == "all" else sound.base
-    stood = areas.listing(session, code, base) if base else ()
-    cells, listed = taken(parsed, taking, stood)
-    summed = totals.laid_over(
-        cells,
-        listed,
-        base_areas=stood,
-        load=lambda periods: schedules.load(
-            session, code, base, Selection(periods=periods, cause=None)
-        ),
-        taking=taking,
+    stood = Base(
+        areas.listing(session, code, base) if base else (),
+        breaks.listing(session, code, base) if base else (),
+        lambda selection: schedules.load(session, code, base, selection),
     )
+    made = made_of(parsed, taking, stood)
     return Change(
         collection=code,
         base=sound.base,
-        cells=summed.cells,
-        areas=summed.areas,
+        cells=made.cells,
+        areas=made.areas,
         basis=sound.basis,
         upload=sound.upload.id,
         replace=taking.gives_way == "all",
-        ended=summed.ended,
+        ended=made.ended,
         taking=taking,
+        ended_areas=made.ended_areas,
+        breaks=made.breaks,
+        ended_breaks=made.ended_breaks,
     )
 
 

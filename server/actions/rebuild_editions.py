@@ -4,14 +4,22 @@ import hashlib
 from dataclasses import dataclass, field
 
 from server.accounts.viewer import Right, Viewer
-from server.actions import totals
 from server.actions.commit_upload import read
-from server.actions.taking import taken
+from server.actions.laid_over import Base, made_of
 from server.intake.parsing import READER
-from server.store import areas, collections, digests, editions, schedules, uploads
+from server.store import (
+    areas,
+    breaks,
+    collections,
+    digests,
+    editions,
+    rows,
+    schedules,
+    uploads,
+)
 from server.store.connect import Session
 from server.store.errors import Refused
-from server.store.records import Area, Basis, Edition, Key, Selection, Upload, Vector
+from server.store.records import Area, Basis, Break, Edition, Key, Selection, Upload, Vector
 
 EVERYTHING = Selection(cause=None)
 
@@ -38,6 +46,7 @@ class _Content:
 
     cells: dict[Key, Vector]
     areas: tuple[Area, ...]
+    breaks: tuple[Break, ...]
     basis: Basis
 
     @property
@@ -46,9 +55,19 @@ class _Content:
             (
                 digests.of_basis(self.basis),
                 *map(digests.of_area, self.areas),
+                *map(digests.of_break, self.breaks),
                 *(digests.of_schedule(key, cell) for key, cell in self.cells.items()),
             )
         )
+
+    def load(self, selection: Selection) -> dict[Key, Vector]:
+        """Its schedules of some areas and years."""
+        return {
+            key: cell
+            for key, cell in self.cells.items()
+            if (selection.areas is None or key.area in selection.areas)
+            and (selection.periods is None or key.period in selection.periods)
+        }
 
 
 def rebuild_editions(session: Session, *, collection: str, by: Viewer) -> tuple[Rebuilt, ...]:
@@ -79,6 +98,7 @@ def _stored(session: Session, collection: str, edition: Edition) -> _Content:
     return _Content(
         schedules.load(session, collection, edition.number, EVERYTHING),
         areas.listing(session, collection, edition.number),
+        breaks.listing(session, collection, edition.number),
         edition.basis,
     )
 
@@ -86,23 +106,18 @@ def _stored(session: Session, collection: str, edition: Edition) -> _Content:
 def _anew(session: Session, edition: Edition, contents: dict[int, _Content]) -> _Content:
     """Raises: Refused where the files, their reading or the base are not to be had."""
     upload, basis = _readable(session, edition)
-    base = _Content({}, (), basis)
+    base = _Content({}, (), (), basis)
     if edition.base and not edition.replaces:
         if edition.base not in contents:
             raise Refused("Its base, edition {base}, could not be made anew.", base=edition.base)
         base = contents[edition.base]
 
-    def load(periods: tuple[str, ...] | None) -> dict[Key, Vector]:
-        if periods is None:
-            return base.cells
-        return {key: cell for key, cell in base.cells.items() if key.period in periods}
-
-    cells, listed = taken(read(session, upload), edition.taking, base.areas)
-    summed = totals.laid_over(
-        cells, listed, base_areas=base.areas, load=load, taking=edition.taking
-    )
-    kept = {key: cell for key, cell in base.cells.items() if key not in summed.ended}
-    return _Content(kept | summed.cells, summed.areas, basis)
+    stood = Base(base.areas, base.breaks, base.load)
+    made = made_of(read(session, upload), edition.taking, stood)
+    kept = {key: cell for key, cell in base.cells.items() if key not in made.ended}
+    said = {rows.of_break(one) for one in (*made.ended_breaks, *made.breaks)}
+    held = (*(one for one in base.breaks if rows.of_break(one) not in said), *made.breaks)
+    return _Content(kept | made.cells, made.areas, held, basis)
 
 
 def _readable(session: Session, edition: Edition) -> tuple[Upload, Basis]:

@@ -5,7 +5,7 @@ from collections import Counter
 from collections.abc import Sequence
 
 from server.accounts.viewer import Right, Viewer
-from server.intake.mapping import ROLES
+from server.intake.mapping import EVERY_ROLE
 from server.store import uploads
 from server.store.connect import Session, transaction
 from server.store.errors import Refused
@@ -59,12 +59,12 @@ def _require_roles(roles: list[str]) -> None:
     if not roles:
         raise Refused("No file was handed in. Choose a file of deaths and one of population.")
     for role, count in Counter(roles).items():
-        if role not in ROLES:
+        if role not in EVERY_ROLE:
             raise Refused(
                 "A file was handed in as {role}, which is no kind of file. It must be one of: "
                 "{known}.",
                 role=role,
-                known=", ".join(ROLES),
+                known=", ".join(EVERY_ROLE),
             )
         if count > 1:
             raise Refused(

@@ -67,6 +67,16 @@ class Break:
 
 
 @dataclass(frozen=True, slots=True)
+class Shock:
+    """Years that no course is measured from or to: a hatched band with a word."""
+
+    first: float  # where the band begins and ends, in data units
+    last: float
+    label: str
+    short: str
+
+
+@dataclass(frozen=True, slots=True)
 class Note:
     text: str
     at: At
@@ -95,6 +105,7 @@ class Chart:
     drops: tuple[Drop, ...] = ()
     between: tuple[int, int] | None = None  # series whose space between is hatched
     breaks: tuple[Break, ...] = ()
+    shocks: tuple[Shock, ...] = ()
     foot_row: tuple[tuple[float, str], ...] = ()  # (x, text) under the bars
     foot_sum: str = ""
     notes: tuple[Note, ...] = field(default_factory=tuple)

@@ -155,21 +155,7 @@ class _Canvas:
             **self._above(),
         )
         yield from self._axis_word()
-        for broken in chart.breaks:
-            yield self._word(
-                broken.short if self.measure.narrow else broken.label,
-                "@rubric",
-                style="italic",
-                x=broken.x,
-                xref="x",
-                xanchor="right",
-                xshift=-5,
-                y=0,
-                yref="paper",
-                yanchor="bottom",
-                yshift=4,
-                align="right",
-            )
+        yield from self._dated()
         for mark, (side, top) in zip(chart.marks, self._tops(), strict=True):
             yield self._word(
                 mark.label,
@@ -203,6 +189,48 @@ class _Canvas:
         for note in chart.notes:
             yield self._at(note.text, note.at, "@ink-2", style="italic")
         yield from self._foot()
+
+    def _dated(self) -> Iterator[Part]:
+        """Words of breaks at their rules, each a line higher than the one before where they would
+        meet, and of years of shock at the top of their bands."""
+        character = CHARACTER * self.measure.text / 14.5
+        ends: list[tuple[float, float]] = []  # of the words placed so far, px; one a line
+        for broken in sorted(self.chart.breaks, key=lambda one: one.x):
+            text = broken.short if self.measure.narrow else broken.label
+            at, width = self.px(broken.x), character * len(text) + 10
+            left = at >= width
+            first, last = (at - width, at) if left else (at, at + width)
+            line = next((n for n, (_, end) in enumerate(ends) if end <= first), len(ends))
+            ends[line : line + 1] = [(first, last)]
+            yield self._word(
+                text,
+                "@rubric",
+                style="italic",
+                x=broken.x,
+                xref="x",
+                xanchor="right" if left else "left",
+                xshift=-5 if left else 5,
+                y=0,
+                yref="paper",
+                yanchor="bottom",
+                yshift=4 + line * (self.measure.text + 4),
+                align="right" if left else "left",
+            )
+        for shock in self.chart.shocks:
+            yield self._word(
+                shock.short if self.measure.narrow else shock.label,
+                "@ink-2",
+                style="italic",
+                x=(shock.first + shock.last) / 2,
+                xref="x",
+                xanchor="center",
+                y=1,
+                yref="paper",
+                yanchor="top",
+                yshift=2,
+                bgcolor="@ground",
+                borderpad=1,
+            )
 
     def _above(self) -> Part:
         return {

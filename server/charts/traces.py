@@ -12,9 +12,9 @@ Trace = dict[str, Any]
 
 
 def traces(chart: Chart) -> list[Trace]:
-    """Hatched space first, then the series in their order."""
+    """Hatched bands and spaces first, then the series in their order."""
     drawn = [trace for series in chart.series for trace in _DRAW[series.draw](series, chart)]
-    return [*_between(chart), *drawn]
+    return [*_shocks(chart), *_between(chart), *drawn]
 
 
 def _lines(series: Series, chart: Chart) -> Iterator[Trace]:
@@ -104,6 +104,13 @@ def _dots(series: Series, chart: Chart) -> Iterator[Trace]:
     } | _hover(series, chart)
 
 
+_HATCH = {
+    "shape": "/",
+    "size": 5,
+    "solidity": 0.18,
+    "fillmode": "replace",
+    "bgcolor": "rgba(0,0,0,0)",
+}
 _DRAW = {"line": _lines, "needles": _needles, "bars": _bars, "dots": _dots}
 
 
@@ -114,20 +121,29 @@ def _between(chart: Chart) -> Iterator[Trace]:
     first, second = (chart.series[index] for index in chart.between)
     edge = {"type": "scatter", "mode": "lines", "line": {"width": 0}, "hoverinfo": "skip"}
     yield edge | {"x": _short(first.x), "y": _short(first.y)}
-    hatch = {
-        "shape": "/",
-        "size": 5,
-        "solidity": 0.18,
-        "fillmode": "replace",
-        "fgcolor": f"@{first.role}",
-        "bgcolor": "rgba(0,0,0,0)",
-    }
     yield edge | {
         "x": _short(second.x),
         "y": _short(second.y),
         "fill": "tonexty",
-        "fillpattern": hatch,
+        "fillpattern": _HATCH | {"fgcolor": f"@{first.role}"},
     }
+
+
+def _shocks(chart: Chart) -> Iterator[Trace]:
+    """A band over each run of years of shock, hatched: it reads in grey print."""
+    low, high = chart.y_range
+    for shock in chart.shocks:
+        first, last = max(shock.first, chart.x_range[0]), min(shock.last, chart.x_range[1])
+        yield {
+            "type": "scatter",
+            "mode": "lines",
+            "x": [first, first, last, last, first],
+            "y": [low, high, high, low, low],
+            "line": {"width": 0},
+            "hoverinfo": "skip",
+            "fill": "toself",
+            "fillpattern": _HATCH | {"fgcolor": "@ink-2/.7"},
+        }
 
 
 def _whiskers(series: Series, color: str, thickness: float) -> Trace:

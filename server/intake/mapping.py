@@ -28,6 +28,8 @@ ROLES: dict[str, tuple[str, ...]] = {
 }
 # and which it may carry besides
 BESIDE: dict[str, tuple[str, ...]] = {"births": ("stillbirths", "neonatal_deaths")}
+LISTS = ("areas", "breaks")  # roles of small tables that hold no counts
+EVERY_ROLE = (*ROLES, *LISTS)
 WITHOUT_AGE = (*ROLES["births"], *BESIDE["births"])  # counts, not columns, that no age goes with
 
 

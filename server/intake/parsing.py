@@ -9,6 +9,7 @@ import numpy as np
 
 from engine.panel import SEXES
 from server.intake.areas_over_time import told
+from server.intake.areas_over_time import told
 from server.intake.cells import (
     AREA_UNSTATED,
     TOTAL,
@@ -58,6 +59,8 @@ class Parsed:
     row_count: int  # rows read, headings and blank lines not counted
     sound_count: int  # rows without an error
     whole: str  # code of the area that is summed from the others; empty where none is
+    successions: Successions = NOTHING  # not yet applied: the edition before has old codes too
+    breaks: tuple[Break, ...] = ()
     successions: Successions = NOTHING  # not yet applied: the edition before has old codes too
     breaks: tuple[Break, ...] = ()
     unstated: tuple[Unstated, ...] = ()  # what became of counts that do not state all

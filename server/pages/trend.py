@@ -11,6 +11,7 @@ from server.pages import frames, trend_chart
 from server.pages import trend_tables as tables
 from server.pages.choices import Grouped, Offer, indicators, offer
 from server.pages.page import Caution, Page
+from server.results.courses import Course
 from server.results.questions import (
     DEFAULT_INDICATOR,
     ComparisonQuestion,
@@ -21,6 +22,7 @@ from server.results.questions import (
 )
 from server.results.series import Series, series
 from server.sentences import basis, kinds, names
+from server.sentences import breaks as of_breaks
 from server.sentences import trend as say
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.reasons import reason
@@ -49,6 +51,7 @@ class TrendPage(Page):
     template: ClassVar[str] = "trend/page.html"
     out_of_band: ClassVar[tuple[str, ...]] = ("areas", "sexes")  # none chosen: the page chooses
     drawn: bool
+    broken: bool  # a break or a year of shock lies among its years
     choice: Choice
     computed: tuple[Sentence, ...]
     basis: tuple[Sentence, ...]
@@ -58,7 +61,7 @@ class TrendPage(Page):
 def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendPage:
     found = series(session, heading, question)
     label, brief = _(found.indicator.label), _(names.brief(found.indicator.label))
-    courses = [course(found, line) for line in range(len(found.lines))]
+    courses = [course(found, one) for one in found.courses]
     told = [one for one in courses if one is not None]
     area, sex = found.lines[0]
     chart = trend_chart.draw(found, say.finding(brief, told), frames.source(heading))
@@ -69,6 +72,7 @@ def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendP
             lead.append(kinds.could_be_seen(found.indicator, change, found.settings))
             lead.append(say.halves(courses[0]))
         lead.append(say.others([one for one in courses[1 : 1 + SAID] if one]))
+        lead += _broken(found)
     return TrendPage(
         frame=frames.pinned(
             heading,
@@ -86,11 +90,12 @@ def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendP
         ),
         answer=say.answer(courses[0], brief, names.population(sex, found.holdings.name(area))),
         lead=tuple(sentence for sentence in lead if sentence),
-        tables=(tables.years(found), tables.estimates(found)),
+        tables=(tables.years(found), tables.estimates(found), *tables.breaks(found)),
         charts=(chart,) if chart else (),
         cautions=_cautions(found),
         twins=frames.twins(heading, question),
         drawn=chart is not None,
+        broken=bool(found.broken),
         choice=_choice(found),
         computed=(
             phrase(
@@ -106,9 +111,9 @@ def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendP
     )
 
 
-def course(found: Series, line: int) -> say.Course | None:
-    """How a line ran; None where it has fewer than two values."""
-    ends = found.ends[line]
+def course(found: Series, of: Course) -> say.Course | None:
+    """How a line ran between breaks; None where it has fewer than two values."""
+    ends, line = of.run.ends, of.run.line
     if ends is None:
         return None
     first, last = (found.estimate[line, found.periods.index(end)] for end in ends)
@@ -121,11 +126,26 @@ def course(found: Series, line: int) -> say.Course | None:
         _years(found, ends[1]),
         first,
         last,
-        found.change[line],
-        found.middle[line] and _years(found, found.middle[line]),
-        found.earlier[line],
-        found.later[line],
+        of.change,
+        of.run.middle and _years(found, of.run.middle),
+        of.earlier,
+        of.later,
     )
+
+
+def _broken(found: Series) -> list[Sentence]:
+    """Where the lines stop, what changed before that, and which years are not measured from."""
+    parting = [one for one in found.broken if one.kind != "shock"]
+    if not found.broken:
+        return []
+    told = [one for part in found.before[-SAID:] if (one := course(found, part))]
+    said = [of_breaks.before(one.who, one.first, one.last, say.moved(one)) for one in told]
+    left_out = sorted({one.period for one in found.broken if one.kind == "shock"})
+    return [
+        of_breaks.parted(parting) if parting else (),
+        of_breaks.before_all(said),
+        of_breaks.left_out(left_out),
+    ]
 
 
 def _years(found: Series, period: str) -> str:

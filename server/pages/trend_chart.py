@@ -1,17 +1,22 @@
 """The picture of a trend: one line a series, bands for intervals."""
 
+from typing import TypeVar
+
 import numpy as np
 
 from engine.ages import Array
 from server.charts.chart import Chart, Sequence
 from server.charts.chart import Series as Line
 from server.charts.scales import ticks
+from server.pages import breaks as of_breaks
 from server.pages.drawing import values
+from server.results.breaks import between, parting
 from server.results.series import Series
 from server.sentences import names
 from server.sentences.numbers import number
 from server.sentences.text import _
 
+T = TypeVar("T")
 COLOURS = 7
 NAMED = 8  # so many lines are named at their ends
 
@@ -55,6 +60,12 @@ def draw(found: Series, finding: str, source: str) -> Chart | None:
         y_ticks=shown,
         hover=f"%{{customdata}}: %{{y:,.{decimals}f}}",
         table="years",
+        breaks=of_breaks.rules(
+            [one for one in found.broken if one.kind != "shock"],
+            [area for area, _sex in found.lines],
+            found.holdings.name,
+        ),
+        shocks=of_breaks.shocks([one.period for one in found.broken if one.kind == "shock"]),
         series=tuple(_line(found, line, *scaled) for line in range(len(found.lines))),
     )
 
@@ -108,21 +119,48 @@ def _line(found: Series, line: int, value: Array, low: Array, high: Array) -> Li
     name = found.holdings.name(area)
     several = len({one for one, _sex in found.lines}) > 1
     who = f"{name}, {names.sex(sex)}" if several else names.sex(sex)
+    cut = _cuts(found, area)
     return Line(
         f"{who} {text}",
-        tuple(float(period) for period in found.periods),
-        values(value[line]),
+        _between_years(found.periods, cut),
+        _cut(values(value[line]), cut, None),
         sex=sex,  # type: ignore[arg-type]
         role=_role(found, area),
         weight="one" if len(found.lines) <= 2 else "many",
-        low=_limits(low[line]),
-        high=_limits(high[line]),
+        low=_cut(_limits(low[line]), cut, None),
+        high=_cut(_limits(high[line]), cut, None),
         at="end" if labelled and len(last) else None,
         short=f"{name} {text}" if several else f"{names.sex(sex)} {text}",
         name=who,
-        names=found.periods,
-        provisional=tuple(status == "provisional" for status in found.status[line]),
+        names=_cut(found.periods, cut, ""),
+        provisional=_cut(tuple(one == "provisional" for one in found.status[line]), cut, False),
     )
+
+
+def _cuts(found: Series, area: str) -> tuple[int, ...]:
+    """Before which points the line of an area is broken."""
+    breaks = parting(found.broken, area)
+    return tuple(
+        at
+        for at in range(1, len(found.periods))
+        if between(breaks, found.periods[at - 1], found.periods[at])
+    )
+
+
+def _between_years(periods: tuple[str, ...], cuts: tuple[int, ...]) -> tuple[float, ...]:
+    """Where the points lie; a break half a year before the first year of the new kind."""
+    years = [float(period) for period in periods]
+    for at in reversed(cuts):
+        years.insert(at, years[at] - 0.5)
+    return tuple(years)
+
+
+def _cut(column: tuple[T, ...], cuts: tuple[int, ...], gap: T) -> tuple[T, ...]:
+    """A column with a gap at each break."""
+    out = list(column)
+    for at in reversed(cuts) if column else ():
+        out.insert(at, gap)
+    return tuple(out)
 
 
 def _limits(column: Array) -> Sequence:

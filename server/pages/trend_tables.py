@@ -4,8 +4,10 @@ import numpy as np
 
 from engine.estimates import Estimate
 from server.exports.table import Cell, Column, Row, Table
+from server.pages import breaks as of_breaks
 from server.pages.cells import columns, triple
 from server.results.series import Series
+from server.sentences import breaks as say
 from server.sentences import names
 from server.sentences.text import _
 
@@ -28,7 +30,8 @@ def years(found: Series) -> Table:
         cells: list[Cell] = [found.periods[at]]
         cells += [_triple(found, line, at)[0] for line in range(len(found.lines))]
         provisional = any(status[at] == "provisional" for status in found.status)
-        rows.append(Row(tuple(cells), provisional=provisional))
+        here = [one for one in found.broken if one.period == found.periods[at]]
+        rows.append(Row(tuple(cells), provisional=provisional, second=say.second(here)))
     label = _(found.indicator.label)
     return Table("years", f"{label}, {_(unit.label)}", tuple(heads), tuple(rows))
 
@@ -50,6 +53,11 @@ def estimates(found: Series) -> Table:
             cells: tuple[Cell, ...] = (area, sex, period, *_triple(found, line, at))
             rows.append(Row((*cells, found.status[line][at])))
     return Table("estimates", _("Every figure with its interval"), heads, tuple(rows))
+
+
+def breaks(found: Series) -> tuple[Table, ...]:
+    """What parts these years, where anything does."""
+    return (of_breaks.table(found.broken, found.holdings.name),) if found.broken else ()
 
 
 def _triple(found: Series, line: int, at: int) -> tuple[Cell, ...]:

@@ -10,12 +10,13 @@ from engine.ages import AgeGrid
 from engine.indicators import Indicator
 from engine.panel import Panel
 from engine.settings import Settings, span
+from server.results.breaks import between, parting
 from server.results.questions import PopulationYear
 from server.sentences.names import listed
 from server.sentences.text import _
-from server.store import areas, schedules
+from server.store import areas, breaks, schedules
 from server.store.connect import Session
-from server.store.records import MEASURES, Area, Key, Selection, Vector
+from server.store.records import MEASURES, Area, Break, Key, Selection, Vector
 
 Cells = dict[Key, Vector]
 
@@ -41,6 +42,7 @@ class Holdings:
     sexes: tuple[str, ...]
     periods: tuple[str, ...]
     status: dict[PopulationYear, str]
+    breaks: tuple[Break, ...] = ()
 
     def name(self, area: str) -> str:
         """The area's name; its code where it has none."""
@@ -101,19 +103,27 @@ class Holdings:
 
     def previous(self, wanted: PopulationYear, years: int = 1) -> PopulationYear | None:
         """The same area and sex a year before, or as many as are pooled, where the edition holds
-        it."""
+        it and no break lies between."""
         before = replace(wanted, period=f"{int(wanted.period) - years:04}")
-        return before if self.all_of(before, years) else None
+        if not self.all_of(before, years):
+            return None
+        first = span(before.period, years)[0]
+        return None if self.parted(first, wanted.period, wanted.area) else before
+
+    def parted(self, first: str, last: str, *areas: str) -> tuple[Break, ...]:
+        """The breaks of these areas that lie between two years."""
+        return between(parting(self.breaks, *areas), first, last)
 
 
 def holdings(session: Session, collection: str, number: int) -> Holdings:
-    """Two statements."""
+    """Three statements."""
     contents = schedules.contents(session, collection, number)
     return Holdings(
         areas.listing(session, collection, number),
         contents.sexes,
         contents.periods,
         {PopulationYear(*key): status for key, status in contents.status.items()},
+        breaks.listing(session, collection, number),
     )
 
 

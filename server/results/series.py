@@ -1,7 +1,7 @@
 """One indicator through the years, for chosen areas and sexes: the trend's numbers."""
 
-from collections.abc import Callable, Sequence
-from dataclasses import dataclass, replace
+from collections.abc import Sequence
+from dataclasses import dataclass
 from typing import TypeVar
 
 import numpy as np
@@ -12,28 +12,28 @@ from engine import settings as named
 from engine.ages import AgeGrid
 from engine.estimates import Estimate, Reason
 from engine.indicators import Indicator
-from engine.panel import Panel
 from engine.settings import Settings, span
 from engine.standardisation import few_deaths
-from server.results.estimating import stream
+from server.results import courses
+from server.results.breaks import between, crossed, parting, shocks
+from server.results.courses import Course, newest, runs
 from server.results.loading import (
     Beside,
     Found,
     Holdings,
     Loaded,
     NotInEdition,
-    Shared,
     holdings,
     load,
-    overlap,
-    shared_part,
 )
 from server.results.questions import PopulationYear, TrendQuestion
 from server.results.revision import Moved, moved
 from server.sentences.numbers import whole
 from server.sentences.text import _
+from server.store.breaks import in_order
 from server.store.connect import Session
 from server.store.heading import Heading
+from server.store.records import Break
 
 T = TypeVar("T")
 
@@ -59,19 +59,57 @@ class Series:
     estimate: Estimate
     status: tuple[tuple[str, ...], ...]  # [line][period]: final, provisional; "" where not held
     open_ages: tuple[tuple[int | None, ...], ...]  # [line][period]: where the table ends
-    ends: tuple[tuple[str, str] | None, ...]  # [line]: first and last year with a value
-    change: Estimate  # [line]: value at the last of `ends` less that at the first
-    middle: tuple[str, ...]  # [line]: the year with a value in the middle of them; "" where none
-    earlier: Estimate  # [line]: the change up to the middle year
-    later: Estimate  # [line]: the change from it on
+    courses: tuple[Course, ...]  # [line]: of the newest years that no break parts
+    before: tuple[Course, ...]  # those before breaks, of all lines, the oldest first
     fewest: float  # person-years of the smallest population drawn
     few_deaths: tuple[bool, ...]  # [line]: some year's standardised rate rests on few of them
     headline: PopulationYear  # the first line's newest figure, by which a newer edition is measured
     moved: Moved | None
 
+    @property
+    def broken(self) -> tuple[Break, ...]:
+        """The breaks and years of shock of the areas drawn that lie among the years drawn."""
+        areas = tuple(dict.fromkeys(area for area, _sex in self.lines))
+        first, last = self.periods[0], self.periods[-1]
+        return in_order(
+            (
+                *between(parting(self.holdings.breaks, *areas), first, last),
+                *(
+                    one
+                    for one in shocks(self.holdings.breaks, *areas)
+                    if first <= one.period <= last
+                ),
+            )
+        )
+
+    @property
+    def ends(self) -> tuple[tuple[str, str] | None, ...]:
+        """[line]: first and last year of its newest course."""
+        return tuple(one.run.ends for one in self.courses)
+
+    @property
+    def middle(self) -> tuple[str, ...]:
+        """[line]: the year in the middle of its newest course; "" where none."""
+        return tuple(one.run.middle for one in self.courses)
+
+    @property
+    def earlier(self) -> Estimate:
+        """[line]: the change up to the middle year."""
+        return Estimate.stack([one.earlier for one in self.courses])
+
+    @property
+    def later(self) -> Estimate:
+        """[line]: the change from it on."""
+        return Estimate.stack([one.later for one in self.courses])
+
+    @property
+    def change(self) -> Estimate:
+        """[line]: value at the last of `ends` less that at the first."""
+        return Estimate.stack([one.change for one in self.courses])
+
 
 def series(session: Session, heading: Heading, question: TrendQuestion) -> Series:
-    """All lines and years of a completed question: three statements, one engine call a grid; two
+    """All lines and years of a completed question: four statements, one engine call a grid; two
     more statements where a newer edition stands.
 
     Raises: NotInEdition where nothing asked for is held; TooLarge.
@@ -84,16 +122,27 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
     collection, number = heading.collection.code, heading.edition.number
     beside = Beside.of(settings, held.areas, indicator)
     loaded = load(session, collection, number, wanted, beside)
-    estimate = _by_grid(collection, wanted, loaded, indicator, settings)[
+    flat = _by_grid(collection, wanted, loaded, indicator, settings)
+    estimate = _across_a_break(flat, wanted, held.breaks, settings.years)[
         np.arange(len(wanted)).reshape(len(lines), len(periods))
     ]
-    ends = tuple(_ends(row, periods) for row in estimate.value)
-    middle = tuple(_middle(row, periods) for row in estimate.value)
-    asked = _asked(lines, _spans(ends, middle), settings.years)
+    of_lines = [
+        runs(at, area, estimate.value[at], periods, held.breaks)
+        for at, (area, _sex) in enumerate(lines)
+    ]
+    ordered = [newest(of_line) for of_line in of_lines]
+    ordered += [
+        run for at, of_line in enumerate(of_lines) for run in of_line if run is not ordered[at]
+    ]
+    asked = courses.asked(ordered, lines, settings.years)
     overlaps = {one.shared for one in asked if one and one.shared}
     loaded |= load(session, collection, number, overlaps) if overlaps else {}
-    changes = _changes(collection, asked, loaded, indicator, settings)[
-        np.arange(len(asked)).reshape(3, len(lines))
+    changes = courses.changes(collection, asked, loaded, indicator, settings)[
+        np.arange(len(asked)).reshape(3, len(ordered))
+    ]
+    told = [
+        Course(run, changes[0, at], changes[1, at], changes[2, at])
+        for at, run in enumerate(ordered)
     ]
     found = [loaded.get(one) for one in wanted]
     headline = PopulationYear(*lines[0], _newest(estimate.value[0], periods))
@@ -108,11 +157,8 @@ def series(session: Session, heading: Heading, question: TrendQuestion) -> Serie
         estimate=estimate,
         status=_rows([one.status if one else "" for one in found], len(periods)),
         open_ages=_rows([one.panel.grid.open_age if one else None for one in found], len(periods)),
-        ends=ends,
-        middle=middle,
-        change=changes[0],
-        earlier=changes[1],
-        later=changes[2],
+        courses=tuple(told[: len(lines)]),
+        before=tuple(one for one in told[len(lines) :] if one.run.ends),
         few_deaths=tuple(
             any(one is not None and few_deaths(indicator, one.panel.deaths) for one in row)
             for row in _rows(found, len(periods))
@@ -185,44 +231,11 @@ def _by_grid(
 
     def read(grid: AgeGrid, places: list[int]) -> Estimate:
         ones = [wanted[at] for at in places]
-        panel, codes = _stacked(ones, loaded, grid), _codes(collection, ones)
+        panel, codes = courses.stacked(ones, loaded, grid), courses.codes(collection, ones)
         return indicators.estimate(indicator, panel, settings, streams=codes)
 
     grids = [loaded[one].panel.grid if one in loaded else None for one in wanted]
-    return _scattered(grids, read)
-
-
-def _stacked(ones: Sequence[PopulationYear], loaded: Found, grid: AgeGrid) -> Panel:
-    return Panel.stack([loaded[one].panel.regroup(grid) for one in ones])
-
-
-def _codes(collection: str, ones: Sequence[PopulationYear]) -> NDArray[np.str_]:
-    return np.stack([stream(collection, one) for one in ones])
-
-
-def _scattered(
-    grids: list[AgeGrid | None], read: Callable[[AgeGrid, list[int]], Estimate]
-) -> Estimate:
-    """What is read of the places of each grid in one call, put where it belongs; the places without
-    a grid say that nothing is held."""
-    places: dict[AgeGrid, list[int]] = {}
-    for place, own in enumerate(grids):
-        if own is not None:
-            places.setdefault(own, []).append(place)
-    value, low, high, se = (np.full(len(grids), np.nan) for _part in range(4))
-    reason = np.full(len(grids), Reason.NOT_AVAILABLE, np.uint8)
-    for grid, at in places.items():
-        part = read(grid, at)
-        value[at], low[at], high[at], se[at] = part.value, part.low, part.high, part.se
-        reason[at] = part.reason
-    return Estimate(value, low, high, reason, se)
-
-
-def _ends(values: NDArray[np.float64], periods: tuple[str, ...]) -> tuple[str, str] | None:
-    known = np.flatnonzero(np.isfinite(values))
-    if len(known) < 2:
-        return None
-    return periods[known[0]], periods[known[-1]]
+    return courses.scattered(grids, read)
 
 
 def _newest(values: NDArray[np.float64], periods: tuple[str, ...]) -> str:
@@ -237,94 +250,19 @@ def _figure(loaded: Loaded | None, indicator: Indicator, settings: Settings) -> 
     return float(indicators.estimate(indicator, loaded.panel, settings).value)
 
 
-def _middle(values: NDArray[np.float64], periods: tuple[str, ...]) -> str:
-    known = np.flatnonzero(np.isfinite(values))
-    if len(known) < 5:  # fewer years have no halves worth telling apart
-        return ""
-    years = np.array([int(periods[at]) for at in known])
-    return periods[int(known[np.argmin(np.abs(years - (years[0] + years[-1]) / 2))])]
-
-
-Span = tuple[str, str] | None  # first and last year; None where there is none
-
-
-def _spans(ends: tuple[Span, ...], middle: tuple[str, ...]) -> tuple[tuple[Span, ...], ...]:
-    """Of each line's whole run, of its earlier and of its later half: [3][line]."""
-    pairs = list(zip(ends, middle, strict=True))
-    return (
-        ends,
-        tuple((end[0], turn) if end and turn else None for end, turn in pairs),
-        tuple((turn, end[1]) if end and turn else None for end, turn in pairs),
-    )
-
-
-@dataclass(frozen=True, slots=True)
-class _Change:
-    """Two years of a line, and the years that both pool."""
-
-    last: PopulationYear
-    first: PopulationYear
-    shared: Shared | None
-
-
-def _asked(
-    lines: tuple[tuple[str, str], ...], spans: tuple[tuple[Span, ...], ...], years: int
-) -> list[_Change | None]:
-    """The changes of every span and line, one after the other; None where a line has none."""
-    found: list[_Change | None] = []
-    for row in spans:
-        for line, ends in zip(lines, row, strict=True):
-            if ends is None:
-                found.append(None)
-                continue
-            first, last = (PopulationYear(*line, period) for period in ends)
-            found.append(_Change(last, first, overlap(last, first, (), years)))
-    return found
-
-
-def _changes(
-    collection: str,
-    asked: list[_Change | None],
-    loaded: Found,
-    indicator: Indicator,
-    settings: Settings,
+def _across_a_break(
+    estimate: Estimate, wanted: list[PopulationYear], breaks: Sequence[Break], years: int
 ) -> Estimate:
-    """The last year of each less the first, [asked], each pair on the grid it shares."""
-
-    def read(grid: AgeGrid, places: list[int]) -> Estimate:
-        chosen = [one for at in places if (one := asked[at])]
-        last, first = ([getattr(one, end) for one in chosen] for end in ("last", "first"))
-        this, that = (_stacked(side, loaded, grid) for side in (last, first))
-        return indicators.difference(
-            indicator,
-            this,
-            that,
-            settings,
-            shared=_counted_in_both(chosen, loaded, this, that),
-            streams=(_codes(collection, last), _codes(collection, first)),
-        )
-
-    def shared_grid(one: _Change | None) -> AgeGrid | None:
-        if one is None:
-            return None
-        return loaded[one.last].panel.grid.common(loaded[one.first].panel.grid)
-
-    return _scattered([shared_grid(one) for one in asked], read)
-
-
-def _counted_in_both(
-    chosen: Sequence[_Change], loaded: Found, this: Panel, that: Panel
-) -> Panel | None:
-    """What pooled years share; nothing where no two of them do."""
-    if not any(one.shared for one in chosen):
-        return None
-    parts = [
-        this[at].over(np.zeros_like)
-        if one.shared is None
-        else shared_part(loaded[one.shared].panel, this[at], that[at])
-        for at, one in enumerate(chosen)
-    ]
-    return Panel.stack([replace(part, whole=None, standard=None) for part in parts])
+    """Without the figures of added years that lie on both sides of a break, [wanted]."""
+    mixed = np.array(
+        [crossed(parting(breaks, one.area), one.period, years) for one in wanted], bool
+    )
+    reason = np.where(mixed, np.uint8(Reason.ACROSS_A_BREAK), estimate.reason)
+    value, low, high, se = (
+        np.where(mixed, np.nan, part)
+        for part in (estimate.value, estimate.low, estimate.high, estimate.se)
+    )
+    return Estimate(value, low, high, reason, se)
 
 
 def _rows(flat: list[T], width: int) -> tuple[tuple[T, ...], ...]:

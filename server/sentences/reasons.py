@@ -70,6 +70,9 @@ def reason(code: int, settings: Settings) -> str:
             " age groups."
         ),
         Reason.TOO_FEW_DEATHS: _("Too few people died for this figure to mean anything."),
+        Reason.ACROSS_A_BREAK: _(
+            "The years added up lie on both sides of a break, which no figure crosses."
+        ),
         Reason.NOT_DECOMPOSED: _("No exact share of this difference belongs to an age."),
     }
     return sentences[Reason(code)]

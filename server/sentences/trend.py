@@ -192,6 +192,16 @@ def others(courses: list[Course]) -> Sentence:
     return phrase("{said}.", said=_("Over the same years: {list}", list="; ".join(said)))
 
 
+def moved(course: Course) -> str:
+    """A change with its interval, after the name of a line."""
+    if course.kind in (Movement.UNKNOWN, Movement.WITHOUT_INTERVAL):
+        return course.signed(course.change)
+    interval = limits(course.change, course.indicator.unit, signed=True)
+    if course.kind not in CLEAR:
+        return _("no clear change ({interval})", interval=interval)
+    return _("{value} ({interval})", value=course.signed(course.change), interval=interval)
+
+
 def finding(label: str, courses: list[Course]) -> str:
     """The chart's title: where the lines end, as far as words can hold it."""
     if not courses:

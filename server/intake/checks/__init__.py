@@ -3,17 +3,22 @@
 from server.intake.checks import (
     ages,
     areas,
+    breaks,
     columns,
     fields,
     files,
+    lists,
+    moved_counts,
     plausibility,
     series,
+    successions,
     totals,
     unstated,
 )
 from server.intake.problems import Kind
 
-FAMILIES = (files, columns, areas, fields, ages, series, totals, unstated, plausibility)
+OF_LISTS = (lists, successions, moved_counts, breaks)
+FAMILIES = (files, columns, areas, fields, ages, series, totals, unstated, plausibility, *OF_LISTS)
 
 KINDS: dict[str, Kind] = {check.key: check for family in FAMILIES for check in family.CHECKS}
 

@@ -8,6 +8,7 @@ from server.intake.checks.files import MOST_COLUMNS
 from server.intake.forms.unpacking import MOST_UNPACKED
 from server.intake.mapping import Form
 from server.intake.parsing import Handed
+from server.intake.standing import Standing
 from tests.server.intake.tables import counts, csv, rows
 
 
@@ -16,6 +17,7 @@ class Case:
     key: str
     files: Callable[[], list[Handed]]
     also: str = ""  # another kind that the same fault must trip
+    standing: Standing | None = None
 
 
 def _bytes(content: bytes) -> Callable[[], list[Handed]]:

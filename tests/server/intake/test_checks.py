@@ -13,6 +13,7 @@ from server.intake.problems import Problem
 from server.intake.standing import Standing
 from server.store.records import Area, Key
 from tests.server.intake.cases import CASES, ONE, SOUND, WOMEN, Case
+from tests.server.intake.list_cases import LIST_CASES
 from tests.server.intake.tables import (
     YEARS,
     births,
@@ -40,6 +41,9 @@ DANISH = Mapping(
 )
 
 
+EVERY = (*CASES, *LIST_CASES)
+
+
 def problems(*files: Handed) -> list[Problem]:
     return list(parse(files).problems)
 
@@ -48,9 +52,9 @@ def keys(*files: Handed) -> list[str]:
     return [problem.key for problem in problems(*files)]
 
 
-@pytest.mark.parametrize("case", CASES, ids=lambda case: case.key)
+@pytest.mark.parametrize("case", EVERY, ids=lambda case: case.key)
 def test_a_fault_trips_its_check_and_no_other(case: Case) -> None:
-    found = problems(*case.files())
+    found = parse(case.files(), case.standing).problems
     assert {problem.key for problem in found} == {case.key, case.also} - {""}
     first = next(problem for problem in found if problem.key == case.key)
     assert str(first) == SENTENCES[case.key]
@@ -58,7 +62,7 @@ def test_a_fault_trips_its_check_and_no_other(case: Case) -> None:
 
 
 def test_every_check_has_a_case() -> None:
-    assert [case.key for case in CASES] == list(KINDS) == list(SENTENCES)
+    assert [case.key for case in EVERY] == list(KINDS) == list(SENTENCES)
 
 
 def test_every_kind_says_what_it_means_and_what_to_do() -> None:

@@ -1,0 +1,89 @@
+"""What an upload makes of its base: the same for a commit, a look ahead and a rebuild."""
+
+from collections.abc import Callable, Iterable, Mapping
+from dataclasses import dataclass, replace
+
+from server.actions import totals
+from server.actions.recoding import Recoded, listed, recoded
+from server.actions.taking import taken
+from server.intake.parsing import Parsed
+from server.intake.successions import Successions
+from server.store import breaks
+from server.store.records import Area, Break, Key, Selection, Taking, Vector
+
+Cells = Mapping[Key, Vector]
+
+
+@dataclass(frozen=True, slots=True)
+class Base:
+    """What is laid over; empty where nothing stands or all of it gives way."""
+
+    areas: tuple[Area, ...]  # in tree order
+    breaks: tuple[Break, ...]
+    load: Callable[[Selection], Cells]
+
+
+@dataclass(frozen=True, slots=True)
+class Made:
+    """What is new and what has ended; see `Change`."""
+
+    cells: dict[Key, Vector]
+    areas: tuple[Area, ...]
+    ended: frozenset[Key]
+    ended_areas: frozenset[str]
+    breaks: tuple[Break, ...]
+    ended_breaks: tuple[Break, ...]
+
+
+def made_of(parsed: Parsed, taking: Taking, base: Base) -> Made:
+    """What is taken of an upload, under the codes its areas have become, with totals and breaks.
+
+    Raises: Refused, as `taken`, `recoded` and `totals.laid_over` do.
+    """
+    cells, areas = taken(parsed, taking, base.areas)
+    said = parsed.successions
+    old = base.load(Selection(areas=said.codes, cause=None)) if said and base.areas else {}
+    before = recoded(old, said)
+    cells = _laid(before.made, cells, recoded(cells, said))
+    areas, ended = listed(areas, said, {*old.keys() - before.gone, *cells})
+    kept = tuple(area for area in base.areas if area.code not in ended)
+
+    def load(periods: tuple[str, ...] | None) -> Cells:
+        found = base.load(Selection(periods=periods, cause=None))
+        return {key: cell for key, cell in found.items() if key not in before.gone}
+
+    summed = totals.laid_over(cells, areas, base_areas=kept, load=load, taking=taking)
+    return Made(
+        cells=summed.cells,
+        areas=summed.areas,
+        ended=(summed.ended | before.gone) - summed.cells.keys(),
+        ended_areas=ended & {area.code for area in base.areas},
+        breaks=breaks.in_order((*breaks.new(parsed.breaks), *_carried(base.breaks, said, ended))),
+        ended_breaks=(
+            *breaks.ended(parsed.breaks, base.breaks),
+            *(one for one in base.breaks if one.area in ended),
+        ),
+    )
+
+
+def _laid(before: Cells, cells: Cells, handed: Recoded) -> dict[Key, Vector]:
+    """Counts handed in go before those made of the base. Persons of the base give way where a sex
+    is handed in, since they are its sum with the other."""
+    own = {key: cell for key, cell in cells.items() if key not in handed.gone} | handed.made
+    sexes = {replace(key, sex="p") for key in own if key.sex in ("f", "m")}
+    return {key: cell for key, cell in before.items() if key not in sexes} | own
+
+
+def _carried(stood: Iterable[Break], said: Successions, ended: Iterable[str]) -> tuple[Break, ...]:
+    """A break of a code that has ended parts the counts made of it too."""
+    stood = tuple(stood)
+    known = {(one.area, one.period, one.kind, one.cause) for one in stood}
+    made = {
+        (new, one.period, one.kind, one.cause): replace(one, area=new)
+        for one in stood
+        if one.area in set(ended)
+        for succession in said.of
+        if succession.code == one.area
+        for new in succession.becomes
+    }
+    return tuple(one for key, one in made.items() if key not in known)

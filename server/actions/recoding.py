@@ -1,0 +1,99 @@
+"""Counts given to the codes that their areas have become."""
+
+from collections import defaultdict
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from server.actions.totals import total
+from server.intake.successions import Share, Successions
+from server.store.errors import Refused
+from server.store.records import Area, Key, Vector
+
+Cells = Mapping[Key, Vector]
+DEATHS, COUNTED = "deaths", "counted_deaths"
+
+
+@dataclass(frozen=True, slots=True)
+class Recoded:
+    made: dict[Key, Vector]  # under the new codes
+    gone: frozenset[Key]  # schedules of the old codes that were used up, or have ended
+
+
+def recoded(cells: Cells, said: Successions) -> Recoded:
+    """What the schedules of old codes become. A merge is the exact sum of all its codes; a part by
+    a share is estimated and carries the deaths as they were counted.
+
+    Persons beside women and men are left to be summed anew.
+    Raises: Refused where deaths or population of one of the codes to be merged are lacking.
+    """
+    parts: dict[Key, dict[str, Vector]] = defaultdict(dict)  # by the old code
+    gone = set()
+    for key, cell in cells.items():
+        one = said.find(key.area, key.period)
+        if one is None:
+            continue
+        gone.add(key)
+        if _summed_anew(key, cells):
+            continue
+        for share in one.shares_of(key):
+            new = replace(key, area=share.becomes)
+            parts[new][key.area] = _part(cell, share)
+            if key.measure == DEATHS and not share.whole:
+                counted = cells.get(replace(key, measure=COUNTED), cell)
+                parts[replace(new, measure=COUNTED)][key.area] = counted
+    made = {}
+    for new, found in sorted(parts.items()):
+        codes = said.before(new.area, new.period)
+        if new.measure == COUNTED:
+            deaths = parts[replace(new, measure=DEATHS)]
+            found = {code: found.get(code, deaths[code]) for code in deaths}
+        if lacking := [code for code in codes if code not in found]:
+            _require_optional(new, lacking)
+            continue
+        made[new] = total([found[code] for code in codes])
+    return Recoded(made, frozenset(gone))
+
+
+def _part(cell: Vector, share: Share) -> Vector:
+    """The part of one schedule; a count without ages takes the share of age 0."""
+    if share.whole:
+        return cell
+    at = np.searchsorted(share.grid.starts, cell.grid.starts, side="right") - 1
+    values = cell.values * np.array(share.values)[at]
+    return replace(cell, values=values, estimated=True)
+
+
+def _summed_anew(key: Key, cells: Cells) -> bool:
+    return key.sex == "p" and all(replace(key, sex=sex) in cells for sex in ("f", "m"))
+
+
+def _require_optional(new: Key, lacking: list[str]) -> None:
+    """Counts beside the rates may be lacking: the new code then has none of them."""
+    if new.measure in (DEATHS, "person_years"):
+        raise Refused(
+            "{area} in {period} is to be made of counts of {codes}, of which there are none "
+            "({measure}, {sex}). Hand them in, or narrow the years in the table of areas.",
+            area=new.area,
+            period=new.period,
+            codes=", ".join(lacking),
+            measure=new.measure,
+            sex=new.sex,
+        )
+
+
+def listed(
+    areas: Iterable[Area], said: Successions, left: Iterable[Key]
+) -> tuple[tuple[Area, ...], frozenset[str]]:
+    """Areas without the old codes that have no counts left, with the new ones; and the codes that
+    ended."""
+    codes = {key.area for key in left} | {area.code for area in said.areas}
+    ended = frozenset(said.codes) - codes
+    kept = {area.code: area for area in areas if area.code not in ended}
+    for area in said.areas:
+        before = kept.get(area.code, area)
+        kept[area.code] = replace(
+            before, name=area.name or before.name, parent=area.parent or before.parent
+        )
+    return tuple(kept.values()), ended
