@@ -20,6 +20,7 @@ def add_files(command: argparse.ArgumentParser) -> None:
         ("deaths", _("deaths")),
         ("population", _("population or person-years")),
         ("births", _("births: live and, if you have them, still; deaths before 28 days")),
+        ("rates", _("death rates or probabilities, to be multiplied by the population")),
     ):
         files.add_argument(f"--{role}", metavar=_("FILE"), help=text)
 

@@ -16,6 +16,7 @@ COLUMNS = (
     "births",
     "stillbirths",
     "neonatal_deaths",
+    "rate",
     "status",
 )
 
@@ -25,9 +26,13 @@ ROLES: dict[str, tuple[str, ...]] = {
     "deaths": ("deaths",),
     "population": ("population",),
     "births": ("births",),
+    "rates": ("rate",),
 }
 # and which it may carry besides
-BESIDE: dict[str, tuple[str, ...]] = {"births": ("stillbirths", "neonatal_deaths")}
+BESIDE: dict[str, tuple[str, ...]] = {
+    "births": ("stillbirths", "neonatal_deaths"),
+    "rates": ("population",),
+}
 LISTS = ("areas", "breaks")  # roles of small tables that hold no counts
 EVERY_ROLE = (*ROLES, *LISTS)
 WITHOUT_AGE = (*ROLES["births"], *BESIDE["births"])  # counts, not columns, that no age goes with
@@ -39,6 +44,10 @@ def numbers_of(role: str) -> tuple[str, ...]:
 
 
 NUMBERS = tuple(dict.fromkeys(number for role in ROLES for number in numbers_of(role)))
+
+
+RATE_KINDS = ("rate", "probability")  # deaths per person-year; share who die of those who begin
+JANUARY = "january"  # population of 1 January, averaged with that of the next to person-years
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,6 +83,7 @@ class Mapping:
     births: str = ""  # live births
     stillbirths: str = ""
     neonatal_deaths: str = ""  # deaths before 28 days, of those counted at age 0
+    rate: str = ""  # death rates or probabilities of dying
     status: str = ""  # column that says provisional or final
 
     # what stands in no column
@@ -86,6 +96,8 @@ class Mapping:
     sex_codes: tuple[tuple[str, str], ...] = ()  # text in the file and f, m or p
     last_age_open: bool = False  # the last age of each series is open though it is not marked
     provisional_years: tuple[str, ...] = ()
+    rate_is: str = ""  # one of RATE_KINDS
+    population_is: str = ""  # JANUARY, or empty: people at risk as they stand
     # a number and what each of its figures is to be multiplied by: ("population", "1000")
     units: tuple[tuple[str, str], ...] = ()
     # of sex, age and area: what is done with counts that do not state it, "spread" or "left_out"

@@ -25,11 +25,16 @@ from server.intake.cells import (
 )
 from server.intake.checks import OF_LEDGER, ages, columns, fields, files, totals, unstated
 from server.intake.checks import areas as area_checks
+from server.intake.checks import worked_out as derived
+from server.intake.forms import across
+from server.intake.forms.addresses import placed
+from server.intake.january import averaged
 from server.intake.layout import layout
 from server.intake.ledger import Ledger
-from server.intake.mapping import EVERY_ROLE, LISTS, ROLES, Mapping
+from server.intake.mapping import EVERY_ROLE, JANUARY, LISTS, ROLES, Mapping
 from server.intake.problems import Problem, errors_of
-from server.intake.schedules import Aside, Block, asides, blocks, ordered
+from server.intake.rates import WorkedOut, worked_out
+from server.intake.schedules import RATE, Aside, Block, asides, blocks, ordered
 from server.intake.sharing import Unstated, settle
 from server.intake.sheets import Sheet, load
 from server.intake.standing import Standing
@@ -112,6 +117,7 @@ def _counts(handed: Sequence[Handed], standing: Standing | None) -> Parsed:
     """The files of counts, as `parse`."""
     problems: list[Problem] = []
     sheets: list[Sheet] = []
+    wide: dict[str, across.Spread] = {}
     unread = 0
     for file in sorted(handed, key=lambda file: list(ROLES).index(file.role)):
         laid = layout(file.content, file.name, file.mapping.form)
@@ -123,9 +129,11 @@ def _counts(handed: Sequence[Handed], standing: Standing | None) -> Parsed:
             unread += laid.row_count
         else:
             sheets.append(load(laid, file.mapping, file.role))
+            if spread := across.spread(file.mapping.form):
+                wide[laid.name] = spread
     codes, areas, clashes = _areas(sheets, handed)
     problems += clashes
-    done = [_sorted(cells(sheet, codes)) for sheet in sheets]
+    done = [_dated(_sorted(cells(sheet, codes)), sheet.mapping) for sheet in sheets]
     problems += [problem for part in done for problem in part.problems]
     parts = {
         area.code
@@ -143,12 +151,14 @@ def _counts(handed: Sequence[Handed], standing: Standing | None) -> Parsed:
     settled = settle(ledger)
     problems += [problem for check in totals.CHECKS for problem in check.problems(ledger)]
     problems += [problem for check in unstated.CHECKS for problem in check.problems(settled)]
+    made = _deaths_of_rates(settled.ledger, done, handed)
+    problems += derived.problems_of(made.found)
     for check in OF_LEDGER:
-        problems += check.problems(settled.ledger)
+        problems += check.problems(made.ledger)
     return Parsed(
-        cells=_vectors(settled.ledger.without_totals()),
+        cells=_vectors(made.ledger.without_totals()),
         areas=areas,
-        problems=tuple(problems),
+        problems=tuple(placed(problem, wide) for problem in problems),
         row_count=unread + sum(part.rows for part in done),
         sound_count=sum(part.sound for part in done),
         whole=_whole(handed),
@@ -227,6 +237,29 @@ def _sorted(read: Cells) -> _Sorted:
     )
 
 
+def _dated(part: _Sorted, mapping: Mapping) -> _Sorted:
+    """With people of 1 January made people at risk, where the mapping says that they are that."""
+    if mapping.population_is != JANUARY:
+        return part
+    mean = averaged(part.blocks, part.age_totals)
+    return replace(
+        part,
+        blocks=list(mean.blocks),
+        age_totals=list(mean.asides),
+        ageless=list(averaged((), part.ageless).asides),
+        problems=part.problems + derived.problems_of(mean.found),
+    )
+
+
+def _deaths_of_rates(
+    ledger: Ledger, done: Sequence[_Sorted], handed: Sequence[Handed]
+) -> WorkedOut:
+    rates = [block for part in done for block in part.blocks if block.measure == RATE]
+    unknown = [aside for part in done for aside in part.ageless if aside.measure == RATE]
+    kind = next((file.mapping.rate_is for file in handed if file.role == "rates"), "")
+    return worked_out(ledger, rates, unknown, kind)
+
+
 def _ledger(
     done: Sequence[_Sorted],
     codes: tuple[str, ...],
@@ -241,12 +274,12 @@ def _ledger(
         codes=codes,
         whole=codes.index(whole.pop()) if whole else UNREADABLE,
         delivered=frozenset(place for place, area in enumerate(areas) if area.delivered),
-        blocks=tuple(block for part in done for block in part.blocks),
+        blocks=tuple(block for part in done for block in part.blocks if block.measure != RATE),
         spoiled=np.unique(np.concatenate([np.zeros(0, np.int64), *(p.spoiled for p in done)])),
         elsewhere=elsewhere,
         unplaced=unplaced,
-        age_totals=tuple(total for part in done for total in part.age_totals),
-        ageless=tuple(aside for part in done for aside in part.ageless),
+        age_totals=tuple(one for part in done for one in part.age_totals if one.measure != RATE),
+        ageless=tuple(one for part in done for one in part.ageless if one.measure != RATE),
         standing=standing,
     )
 
@@ -265,6 +298,10 @@ def _vectors(ledger: Ledger) -> dict[Key, Vector]:
         )
         statuses = np.array(["final", "provisional"], object)[block.provisional.astype(int)]
         found.update(
-            zip(keys, map(Vector, statuses, repeat(block.grid), block.values), strict=True)
+            zip(
+                keys,
+                map(Vector, statuses, repeat(block.grid), block.values, repeat(block.estimated)),
+                strict=True,
+            )
         )
     return found

@@ -13,6 +13,7 @@ from server.intake.problems import Fault, Value
 
 MEASURES = {field: field for field in NUMBERS} | {"population": "person_years"}
 DECIMALS = 6  # counts are rounded to them
+RATE = "rate"  # no measure of the store: becomes deaths
 
 
 @dataclass(frozen=True, slots=True)
@@ -70,6 +71,7 @@ class Block:
     row: Ints  # [line, age], row in the file
     rule: Rule = AS_THEY_ARE
     counted: Array | None = None  # of them as counted and stated, where some were shared out
+    estimated: bool = False  # worked out from rates
 
     @property
     def stated(self) -> Array:
@@ -204,10 +206,14 @@ def blocks(rows: Ordered, spoiled: Ints) -> Iterator[Block]:
                 grid=AgeGrid(starts),
                 place=place[begins[lines]],
                 provisional=provisional,
-                values=np.round(numbers.values[taken], DECIMALS) + 0.0,
+                values=_rounded(numbers.values[taken], field),
                 row=sheet.row[taken],
                 rule=rule,
             )
+
+
+def _rounded(values: Array, field: str) -> Array:
+    return values if field == RATE else np.round(values, DECIMALS) + 0.0
 
 
 def asides(cells: Cells, rows: Flags) -> Iterator[Aside]:

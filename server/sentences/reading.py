@@ -15,6 +15,7 @@ def role(code: str) -> str:
         "deaths": _("deaths"),
         "population": _("population"),
         "births": _("births"),
+        "rates": _("death rates or probabilities"),
     }[code]
 
 
@@ -31,6 +32,7 @@ def field(code: str) -> str:
         "births": _("live births"),
         "stillbirths": _("stillbirths"),
         "neonatal_deaths": _("deaths before 28 days"),
+        "rate": _("death rate or probability"),
         "status": _("provisional or final"),
     }[code]
 

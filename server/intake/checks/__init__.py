@@ -14,11 +14,12 @@ from server.intake.checks import (
     successions,
     totals,
     unstated,
+    worked_out,
 )
 from server.intake.problems import Kind
 
 OF_LISTS = (lists, successions, moved_counts, breaks)
-FAMILIES = (files, columns, areas, fields, ages, series, totals, unstated, plausibility, *OF_LISTS)
+FAMILIES = (files, columns, areas, fields, ages, series, totals, unstated, worked_out, plausibility, *OF_LISTS)
 
 KINDS: dict[str, Kind] = {check.key: check for family in FAMILIES for check in family.CHECKS}
 

@@ -7,9 +7,21 @@ from engine.panel import SEXES
 from server.intake.areas import is_code
 from server.intake.cells import whole_code
 from server.intake.checks.check import Check
-from server.intake.labels import read_year
+from server.intake.checks.files import MOST_ROWS as MOST_COUNTS
+from server.intake.forms.across import spread, wrong
+from server.intake.forms.found import faults
+from server.intake.forms.units import multiplier, suggested
+from server.intake.labels import NOT_STATED, read_year
 from server.intake.layout import Layout
-from server.intake.mapping import COLUMNS, ROLES, Mapping
+from server.intake.mapping import (
+    COLUMNS,
+    JANUARY,
+    NUMBERS,
+    RATE_KINDS,
+    ROLES,
+    Mapping,
+    numbers_of,
+)
 from server.intake.problems import Fault, Problem
 
 
@@ -26,25 +38,29 @@ def _missing(mapped: Mapped) -> Iterator[Fault]:
     needed = ["year", *ROLES[mapped.role]]
     if mapped.role != "births":
         needed += ["age"] + ([] if mapped.mapping.only_sex else ["sex"])
-    columns = ", ".join(mapped.file.columns)[:200]
+    columns = _named(mapped.file)
+    across = mapped.mapping.form.across
+    said = {*across, *(wide.numbers if (wide := spread(mapped.mapping.form)) else ())}
     for field in needed:
-        if not mapped.mapping.column(field):
-            yield Fault(column=field, row=1, values={"field": field, "columns": columns})
+        if not mapped.mapping.column(field) and field not in said:
+            values = {"field": field, "columns": columns}
+            yield Fault(column=field, row=mapped.file.form.heading, values=values)
 
 
 def _unknown(mapped: Mapped) -> Iterator[Fault]:
-    columns = ", ".join(mapped.file.columns)[:200]
-    for field in COLUMNS:
-        column = mapped.mapping.column(field)
-        if column and column not in mapped.file.columns:
-            yield Fault(column=column, row=1, values={"field": field, "columns": columns})
+    columns = _named(mapped.file)
+    across = [("across", *column[:1]) for column in mapped.mapping.form.across_columns]
+    for field, *column in [*((field, mapped.mapping.column(field)) for field in COLUMNS), *across]:
+        if column and column[0] and column[0] not in mapped.file.columns:
+            values = {"field": field, "columns": columns}
+            yield Fault(column=column[0], row=mapped.file.form.heading, values=values)
 
 
 def _no_area(mapped: Mapped) -> Iterator[Fault]:
     mapping = mapped.mapping
     given = mapping.area or mapping.area_name or mapping.only_area or mapping.only_area_name
     if not given:
-        yield Fault(column="area", row=1)
+        yield Fault(column="area", row=mapped.file.form.heading)
 
 
 def _twice(mapped: Mapped) -> Iterator[Fault]:
@@ -52,14 +68,18 @@ def _twice(mapped: Mapped) -> Iterator[Fault]:
     for field in COLUMNS:
         if column := mapped.mapping.column(field):
             fields.setdefault(column, []).append(field)
+    for heading, *values in mapped.mapping.form.across_columns:
+        fields.setdefault(heading, []).append(" ".join(values))
     for column, used in fields.items():
         if len(used) > 1:
-            yield Fault(column=column, row=1, values={"fields": ", ".join(used)})
+            told = {"fields": ", ".join(used)}
+            yield Fault(column=column, row=mapped.file.form.heading, values=told)
 
 
 def _bad_sex(mapped: Mapped) -> Iterator[Fault]:
     for text, sex in (("", mapped.mapping.only_sex), *mapped.mapping.sex_codes):
-        if sex not in SEXES and (sex or text):
+        known = (*SEXES, NOT_STATED) if text else SEXES
+        if sex not in known and (sex or text):
             yield Fault(values={"text": text, "sex": sex})
 
 
@@ -74,6 +94,59 @@ def _bad_code(mapped: Mapped) -> Iterator[Fault]:
     for code in (mapping.only_area, whole_code(mapping), *mapping.delivered):
         if code and not is_code(code):
             yield Fault(values={"text": code})
+
+
+def _bad_across(mapped: Mapped) -> Iterator[Fault]:
+    mapping = mapped.mapping
+    taken = [field for field in COLUMNS if mapping.column(field)]
+    taken += ["sex"] if mapping.only_sex else []
+    yield from faults(wrong(mapping.form, mapped.role, taken), "bad_across")
+
+
+def _too_many_counts(mapped: Mapped) -> Iterator[Fault]:
+    groups = len(set(mapped.mapping.form.across_columns)) or 1
+    if mapped.file.row_count * groups > MOST_COUNTS:
+        yield Fault(values={"count": mapped.file.row_count * groups, "most": MOST_COUNTS})
+
+
+def _numbers_at(mapped: Mapped) -> Iterator[tuple[str, str]]:
+    """Each heading under which a kind of number stands."""
+    for number in numbers_of(mapped.role):
+        if column := mapped.mapping.column(number):
+            yield number, column
+    if wide := spread(mapped.mapping.form):
+        for number in wide.numbers:
+            yield from ((number, heading) for heading in wide.headings(number) if heading)
+
+
+def _unit_not_stated(mapped: Mapped) -> Iterator[Fault]:
+    stated = dict(mapped.mapping.units)
+    told: set[str] = set()
+    for number, heading in _numbers_at(mapped):
+        if number not in stated and number not in told and (unit := suggested(heading)):
+            told.add(number)
+            values = {"number": number, "unit": unit}
+            yield Fault(column=heading, row=mapped.file.form.heading, values=values)
+
+
+def _bad_unit(mapped: Mapped) -> Iterator[Fault]:
+    for number, text in mapped.mapping.units:
+        if number not in NUMBERS or multiplier(text) is None:
+            yield Fault(values={"number": number, "text": text})
+
+
+def _rate_kind(mapped: Mapped) -> Iterator[Fault]:
+    if mapped.role == "rates" and mapped.mapping.rate_is not in RATE_KINDS:
+        yield Fault(column=mapped.mapping.rate, values={"text": mapped.mapping.rate_is})
+
+
+def _population_kind(mapped: Mapped) -> Iterator[Fault]:
+    if mapped.mapping.population_is not in ("", JANUARY):
+        yield Fault(values={"text": mapped.mapping.population_is})
+
+
+def _named(file: Layout) -> str:
+    return ", ".join(filter(None, file.columns))[:200]
 
 
 CHECKS: tuple[Check[Mapped], ...] = (
@@ -139,6 +212,65 @@ CHECKS: tuple[Check[Mapped], ...] = (
         expected="1 to 32 letters A–Z, digits, full stops, hyphens or underscores",
         remedy="Correct the mapping.",
         find=_bad_code,
+    ),
+    Check(
+        key="bad_across",
+        severity="error",
+        meaning="What the mapping says of a wide table contradicts itself or leaves something "
+        "open.",
+        found="{what}",
+        expected="for each heading its age, sex, year and kind of number, each combination once, "
+        "and none of them also in a column",
+        remedy="Correct what the headings are said to mean.",
+        find=_bad_across,
+    ),
+    Check(
+        key="too_many_counts",
+        severity="error",
+        meaning="A wide table holds more numbers than one upload may.",
+        found="{count} numbers",
+        expected="at most {most}",
+        remedy="Split the file by years or areas and upload the parts one after the other.",
+        find=_too_many_counts,
+    ),
+    Check(
+        key="unit_not_stated",
+        severity="error",
+        meaning="A heading speaks of a unit other than one, and it is not said what its figures "
+        "are to be multiplied by.",
+        found="a heading that suggests figures to be multiplied by {unit}",
+        expected="the multiplier of {number}: {unit}, or 1 if the figures are as they stand",
+        remedy="Say in the mapping what the figures are to be multiplied by.",
+        find=_unit_not_stated,
+    ),
+    Check(
+        key="bad_unit",
+        severity="error",
+        meaning="A multiplier of the mapping is no number above zero, or for no number of a file.",
+        found="“{text}” as the multiplier of {number}",
+        expected="a number such as 1000, 0.001 or 1/1000",
+        remedy="Correct the mapping.",
+        find=_bad_unit,
+    ),
+    Check(
+        key="rate_kind_not_stated",
+        severity="error",
+        meaning="Death rates and probabilities of dying are different numbers, and it is not said "
+        "which of them the file holds.",
+        found="“{text}” as the kind of rate",
+        expected="rate (deaths per person-year) or probability (of those who reach an age, the "
+        "share who die in it)",
+        remedy="Say in the mapping which of the two it is.",
+        find=_rate_kind,
+    ),
+    Check(
+        key="bad_population_kind",
+        severity="error",
+        meaning="The mapping dates the population in a way that is not known.",
+        found="“{text}” as the kind of population",
+        expected="january (people on 1 January of each year), or nothing",
+        remedy="Correct the mapping.",
+        find=_population_kind,
     ),
 )
 

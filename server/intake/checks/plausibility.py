@@ -110,7 +110,7 @@ def _first_year(line: Line) -> bool:
 
 def _fractions(ledger: Ledger) -> Iterator[Fault]:
     for block in ledger.of("deaths"):
-        broken = block.stated != np.round(block.stated)
+        broken = (block.stated != np.round(block.stated)) & (not block.estimated)
         if broken.any():
             yield block.fault(block.row[broken], {"text": figure(block.stated[broken][0])})
 

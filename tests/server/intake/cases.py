@@ -3,7 +3,7 @@
 from collections.abc import Callable
 
 from server.intake.parsing import Handed
-from tests.server.intake.form_cases import FORM_CASES, Case
+from tests.server.intake.form_cases import COLUMN_CASES, FORM_CASES, WORKED_OUT_CASES, Case
 from tests.server.intake.tables import (
     births,
     counts,
@@ -54,6 +54,7 @@ CASES = (
     Case("bad_sex_setting", _mapped(sex_codes=(("1", "man"),))),
     Case("bad_provisional_year", _mapped(provisional_years=("14",))),
     Case("bad_area_setting", _mapped(area="", only_area="north east")),
+    *COLUMN_CASES,
     Case("area_names_differ", lambda: [_named("South shore", area="area")]),
     Case(
         "wholes_differ",
@@ -100,6 +101,7 @@ CASES = (
     Case("many_left_out", lambda: [_unstated(MANY, age="left_out")]),
     Case("nothing_to_share_by", lambda: [_unstated(_only_unstated(), age="spread")]),
     Case("not_stated_twice", lambda: [_unstated(UNKNOWN_AGE * 2, age="spread")]),
+    *WORKED_OUT_CASES,
     Case("jump_of_deaths", _set(ONE, deaths=1_010)),
     Case("jump_of_population", _set(WOMEN[3:4], population=41_000)),
     Case("infant_deaths_exceed_births", lambda: [counts(SOUND), births(46)]),

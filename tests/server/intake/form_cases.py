@@ -1,15 +1,29 @@
 """One spoilt file for each way in which it can fail to be a table."""
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from gzip import compress
 
 from server.intake.checks.files import MOST_COLUMNS
 from server.intake.forms.unpacking import MOST_UNPACKED
-from server.intake.mapping import Form
+from server.intake.mapping import Form, Mapping
 from server.intake.parsing import Handed
 from server.intake.standing import Standing
-from tests.server.intake.tables import counts, csv, rows
+from tests.server.intake.tables import (
+    AGES,
+    Row,
+    counts,
+    csv,
+    deaths,
+    population,
+    rows,
+    setting,
+    where,
+    without,
+)
+
+SOUND = rows()
+SOUND_BUT_LAST = without(SOUND, where(SOUND, year=2014))
 
 
 @dataclass(frozen=True)
@@ -34,7 +48,42 @@ def bomb() -> bytes:
     return part * (MOST_UNPACKED // 2**24 + 1)
 
 
-SOUND = rows()
+def wide(content: bytes = b"", **form: object) -> Handed:
+    """Deaths of women in the north, with a column for each age."""
+    columns = tuple((age, age) for age in AGES)
+    said = {"across": ("age",), "across_columns": columns, "across_number": "deaths"} | form
+    mapping = Mapping(year="year", only_area="north", only_sex="f", form=Form(**said))  # type: ignore[arg-type]
+    return Handed("deaths", "wide.csv", content or csv_rows(1), mapping)
+
+
+def csv_rows(count: int) -> bytes:
+    counted = ",".join(str(deaths) for deaths, _ in AGES.values())
+    return f"year,{','.join(AGES)}\n".encode() + f"2010,{counted}\n".encode() * count
+
+
+def headed(population: bytes) -> Handed:
+    """Deaths and population, the latter under this heading."""
+    content = csv(SOUND).replace(b"population", population, 1)
+    return counts(content, population=population.decode())
+
+
+def rated(table: list[Row] = SOUND, **mapping: object) -> Handed:
+    """Rates and the population they are of."""
+    told = [row | {"rate": int(str(row["deaths"])) / int(str(row["population"]))} for row in table]
+    columns = {"deaths": "", "rate": "rate", "rate_is": "rate"} | mapping
+    return replace(counts(csv(told), **columns), role="rates", name="rates.csv")
+
+
+def january(table: list[Row]) -> Handed:
+    return population(table, population_is="january")
+
+
+def wider(table: list[Row]) -> list[Row]:
+    """The table with ages 0 to 4 in one group."""
+    return setting(without(table, where(table, age="1-4")), where(table, age="0"), age="0-4")
+
+
+JOINED = without(SOUND, where(SOUND, year=2012)) + wider(where(SOUND, year=2012))
 WIDE = ",".join(f"c{number}" for number in range(MOST_COLUMNS + 1)).encode() + b"\n1\n"
 ISLE = csv(SOUND).replace(b"north", "Nørre".encode("latin-1"))
 
@@ -55,4 +104,29 @@ FORM_CASES = (
     Case("too_many_columns", _bytes(WIDE)),
     Case("too_many_rows", _bytes(b"a\n" + b"1\n" * 3_000_001)),
     Case("uneven_rows", _bytes(csv(SOUND).replace(b"85+,642", b"85+,1,642", 1))),
+)
+
+COLUMN_CASES = (
+    Case("bad_across", lambda: [wide(across_number="people")], "missing_column"),
+    Case("too_many_counts", lambda: [wide(csv_rows(430_000))]),
+    Case("unit_not_stated", lambda: [headed(b"population (in thousands)")]),
+    Case("bad_unit", lambda: [counts(SOUND, units=(("deaths", "some"),))]),
+    Case("rate_kind_not_stated", lambda: [rated(rate_is="ratio")]),
+    Case("bad_population_kind", lambda: [counts(SOUND, population_is="february")]),
+)
+
+WORKED_OUT_CASES = (
+    Case("last_january", lambda: [deaths(SOUND_BUT_LAST), january(SOUND)]),
+    Case("one_january", lambda: [january(rows(years=(2010,)))]),
+    Case("january_groups_differ", lambda: [january(JOINED)], "last_january"),
+    Case("rates_without_population", lambda: [rated(population="")]),
+    Case("people_coarser_than_rates", lambda: [rated(population=""), population(wider(SOUND))]),
+    Case("rate_too_high", lambda: [rated(units=(("rate", "1000"),))]),
+    Case("probability_above_one", lambda: [rated(units=(("rate", "10"),), rate_is="probability")]),
+    Case("open_group_unknown", lambda: [rated(rate_is="probability")]),
+    Case(
+        "rate_of_unknown",
+        lambda: [rated([*SOUND, SOUND[0] | {"age": "not stated"}])],
+        "age_not_stated",
+    ),
 )

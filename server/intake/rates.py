@@ -1,0 +1,149 @@
+"""Death rates and probabilities of dying made deaths, with the people they are of."""
+
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from engine.ages import AgeGrid, Array
+from engine.panel import SEXES
+from server.intake.cells import Flags, parts_of, sexes_of
+from server.intake.forms.found import Found
+from server.intake.labels import NOT_STATED
+from server.intake.ledger import Ledger
+from server.intake.problems import Value
+from server.intake.schedules import DECIMALS, Aside, Block
+
+HIGHEST = 5.0  # deaths per person-year; the oldest of the old die at 1
+
+
+@dataclass(frozen=True, slots=True)
+class WorkedOut:
+    """The ledger with the deaths among its blocks, and what stood in the way."""
+
+    ledger: Ledger
+    found: tuple[Found, ...]
+
+
+def death_rates(probabilities: Array, grid: AgeGrid) -> Array:
+    """Death rates of probabilities, m = q / (n (1 - q / 2)): those who die in a group of n years
+    live half of it.
+
+    Shape:   [..., age] -> [..., age].
+    Missing: nan for the open group, in which all die whatever the rate.
+    Source:  Preston, Heuveline & Guillot (2001), Demography, ch. 3 (with a = n / 2).
+    >>> death_rates(np.array([0.01, 0.2, 1.0]), AgeGrid((0, 1, 5)))
+    array([0.01005025, 0.05555556,        nan])
+    """
+    closed = probabilities / (grid.widths * (1 - probabilities / 2))
+    closed[..., -1] = np.nan
+    return np.asarray(closed)
+
+
+def worked_out(
+    ledger: Ledger, rates: Sequence[Block], unknown: Sequence[Aside], kind: str
+) -> WorkedOut:
+    """Deaths = rate x person-years, in the age groups of the rates; marked estimated.
+
+    Rates of persons are not used where women and men have theirs: their deaths are summed.
+    """
+    found = [Found("rate_of_unknown", one.fault(one.row, {})) for one in unknown]
+    if not rates:
+        return WorkedOut(ledger, tuple(found))
+    made: list[Block] = []
+    for block in map(_without_persons(rates), rates):
+        stated = ledger.states(block.place)
+        beyond = [*_beyond(block, kind)]
+        found += [*beyond, *_of_unknown(block, stated)]
+        if not beyond:
+            _with_people(ledger, block.pick(stated), kind, made, found)
+    if kind == "probability":
+        found += [_no_open_rate(block) for block in made]
+    return WorkedOut(replace(ledger, blocks=(*ledger.blocks, *made)), tuple(found))
+
+
+def _with_people(
+    ledger: Ledger, rates: Block, kind: str, made: list[Block], found: list[Found]
+) -> None:
+    """Add the deaths of those with people to `made`, and what is wrong with others to `found`."""
+    alone = np.ones(len(rates.place), bool)
+    for people in ledger.of("person_years"):
+        _, here, there = np.intersect1d(rates.place, people.place, return_indices=True)
+        if not len(here):
+            continue
+        alone[here] = False
+        part, beside = rates.pick(here), people.pick(there)
+        if set(part.grid.starts) <= set(beside.grid.starts):
+            made.append(_deaths(part, beside, kind))
+        else:
+            found.append(_coarser(ledger, part, beside))
+    found += _alone(ledger, rates.pick(alone))
+
+
+def _without_persons(rates: Sequence[Block]) -> Callable[[Block], Block]:
+    places = np.concatenate([block.place for block in rates])
+
+    def kept(block: Block) -> Block:
+        women, men = sexes_of(block.place)
+        persons = parts_of(block.place)[1] == SEXES.index("p")
+        return block.pick(~(persons & np.isin(women, places) & np.isin(men, places)))
+
+    return kept
+
+
+def _deaths(rates: Block, people: Block, kind: str) -> Block:
+    exposure = people.regroup(rates.grid).values
+    mx = death_rates(rates.values, rates.grid) if kind == "probability" else rates.values
+    return replace(
+        rates,
+        measure="deaths",
+        values=np.round(mx * exposure, DECIMALS) + 0.0,
+        provisional=rates.provisional | people.provisional,
+        estimated=True,
+    )
+
+
+def _beyond(rates: Block, kind: str) -> Iterator[Found]:
+    """The highest value, if it cannot be a rate or a probability."""
+    if not rates.values.size:
+        return
+    line, age = np.unravel_index(int(rates.values.argmax()), rates.values.shape)
+    highest = float(rates.values[line, age])
+    if highest > (1 if kind == "probability" else HIGHEST):
+        values = {"value": highest, "age": rates.grid.labels[age]}
+        key = "probability_above_one" if kind == "probability" else "rate_too_high"
+        yield Found(key, rates.fault(rates.row[line, age], values))
+
+
+def _of_unknown(rates: Block, stated: Flags) -> Iterator[Found]:
+    if not stated.all():
+        yield Found("rate_of_unknown", rates.fault(rates.row[~stated], {}))
+
+
+def _coarser(ledger: Ledger, rates: Block, people: Block) -> Found:
+    lacking = sorted(set(rates.grid.starts) - set(people.grid.starts))
+    values: dict[str, Value] = {
+        **ledger.named(int(rates.place[0])),
+        "ages": ", ".join(rates.grid.labels[rates.grid.position(start)] for start in lacking),
+        "groups": ", ".join(people.grid.labels),
+    }
+    return Found("people_coarser_than_rates", rates.fault(rates.row, values))
+
+
+def _alone(ledger: Ledger, rates: Block) -> Iterator[Found]:
+    area, sex, year = parts_of(rates.place)
+    for one in np.unique(area).tolist():
+        here = area == one
+        values: dict[str, Value] = {
+            **ledger.named_area(one),
+            "sexes": ", ".join((*SEXES, NOT_STATED)[number] for number in np.unique(sex[here])),
+            "years": ", ".join(map(str, np.unique(year[here]).tolist())),
+        }
+        yield Found("rates_without_population", rates.fault(rates.row[here], values))
+
+
+def _no_open_rate(deaths: Block) -> Found:
+    return Found(
+        "open_group_unknown",
+        deaths.fault(deaths.row[:, -1], {"age": deaths.grid.labels[-1]}),
+    )
