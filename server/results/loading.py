@@ -5,6 +5,7 @@ from dataclasses import dataclass, field, replace
 from typing import Any, NamedTuple, Self
 
 import numpy as np
+from numpy.typing import NDArray
 
 from engine.ages import AgeGrid
 from engine.indicators import Indicator
@@ -12,6 +13,7 @@ from engine.panel import Panel
 from engine.settings import Settings, span
 from server.results.breaks import between, parting
 from server.results.questions import PopulationYear
+from server.results.releasing import released
 from server.sentences.names import listed
 from server.sentences.text import _
 from server.store import areas, breaks, schedules
@@ -32,6 +34,18 @@ class Loaded:
 
     panel: Panel  # no batch axes
     status: str  # provisional where any part of it is
+    withheld: frozenset[int] = frozenset()  # starts of its groups whose deaths only stand in
+    protected: bool = False  # something it rests on is withheld
+
+    def withheld_on(self, grid: AgeGrid) -> NDArray[np.bool_]:
+        """Groups of a grid it can be summed to that hold a withheld one, [age]."""
+        ends = [*grid.starts[1:], np.inf]
+        return np.array(
+            [
+                any(start <= age < end for age in self.withheld)
+                for start, end in zip(grid.starts, ends, strict=True)
+            ]
+        )
 
 
 @dataclass(frozen=True, slots=True)
@@ -161,15 +175,18 @@ def load(
     number: int,
     wanted: Iterable[PopulationYear | Shared],
     beside: Beside = Beside(),
+    *,
+    figures: str = "released",
 ) -> "Found":
     """Panels of those population-years that the edition holds; the others are left out, those too
     of which it lacks one of the years to be pooled. One statement.
 
-    Persons take their first-year rule from women and men where it holds both.
+    Persons take their first-year rule from women and men where it holds both. As released,
+    stand-ins take the place of withheld counts; in full, nothing is withheld.
     """
     asked = tuple(dict.fromkeys(wanted))
     chosen = needed(asked, beside)
-    return assembled(schedules.load(session, collection, number, chosen), asked, beside)
+    return assembled(released(session, collection, number, chosen, figures), asked, beside)
 
 
 def needed(wanted: Iterable[PopulationYear | Shared], beside: Beside = Beside()) -> Selection:
@@ -238,7 +255,8 @@ def _with(own: Loaded, whole: Loaded | None, standard: Loaded | None) -> Loaded:
     beside: dict[str, Any] = {
         name: _on(other.panel, panel.grid) for name, other in others.items() if other is not None
     }
-    return replace(own, panel=replace(panel, **beside))
+    protected = own.protected or any(one is not None and one.protected for one in others.values())
+    return replace(own, panel=replace(panel, **beside), protected=protected)
 
 
 def _on(other: Panel, grid: AgeGrid) -> Panel | None:
@@ -254,12 +272,15 @@ def _assembled(cells: Cells, pool: _Pool) -> Loaded | None:
     if women is None or men is None:
         return own
     together = Panel.persons(women.panel, men.panel)
+    protected = women.protected or men.protected
     if own is None:
-        return Loaded(together, _status((women.status, men.status)))
+        status = _status((women.status, men.status))
+        return Loaded(together, status, women.withheld | men.withheld, protected)
     # the counts of persons may hold deaths of unknown sex: only the first-year rule is taken over
     births = np.where(np.isnan(own.panel.births), together.births, own.panel.births)
     mix = {name: getattr(together, name) for name in ("infant_weight", "infant_ratio")}
-    return replace(own, panel=replace(own.panel, births=births, **mix))
+    mixed = own.protected or 0 in women.withheld | men.withheld
+    return replace(own, panel=replace(own.panel, births=births, **mix), protected=mixed)
 
 
 def _summed(cells: Cells, pool: _Pool) -> Loaded | None:
@@ -269,8 +290,12 @@ def _summed(cells: Cells, pool: _Pool) -> Loaded | None:
         return None
     if len(found) == 1:
         return found[0]
-    status = _status([part.status for part in found])
-    return Loaded(Panel.pooled([part.panel for part in found]), status)
+    return Loaded(
+        Panel.pooled([part.panel for part in found]),
+        _status([part.status for part in found]),
+        frozenset().union(*(part.withheld for part in found)),
+        any(part.protected for part in found),
+    )
 
 
 def _single(cells: Cells, pool: _Pool, period: str) -> Loaded | None:
@@ -286,8 +311,14 @@ def _single(cells: Cells, pool: _Pool, period: str) -> Loaded | None:
         years.grid.regroup(years.values, grid),
         sex=pool.sex,
     )
-    counted = [np.nan if one is None else float(one.values.sum()) for one in births]
-    return Loaded(replace(panel, births=np.array(counted)), _status((deaths.status, years.status)))
+    held = [one if one is not None and not one.withheld else None for one in births]
+    counted = [np.nan if one is None else float(one.values.sum()) for one in held]
+    return Loaded(
+        replace(panel, births=np.array(counted)),
+        _status((deaths.status, years.status)),
+        frozenset({*deaths.withheld, *years.withheld}),
+        any(one is not None and bool(one.withheld) for one in (deaths, years, *births)),
+    )
 
 
 def _status(parts: Sequence[str]) -> str:

@@ -37,6 +37,7 @@ class Vector:
     grid: AgeGrid
     values: Array  # [age]
     estimated: bool = False  # split by shares, or worked out from rates
+    withheld: tuple[int, ...] = ()  # as released: starts of groups whose number only stands in
 
 
 @dataclass(frozen=True, slots=True)
@@ -198,6 +199,41 @@ class Change:
     ended_areas: frozenset[str] = frozenset()  # codes of the base that became others
     breaks: tuple[Break, ...] = ()  # handed in
     ended_breaks: tuple[Break, ...] = ()  # of the base
+
+
+@dataclass(frozen=True, slots=True)
+class Terms:
+    """What may be shown of small counts."""
+
+    threshold: int = 5  # deaths from 1 up to one less are withheld
+    persons: int = 0  # cells with fewer person-years, and the deaths in them, are withheld; 0: none
+    zeros: str = "shown"  # or "withheld": whether it is said that nobody died
+    coarse_below: int = 0  # persons; smaller areas are given by five-year groups; 0: none
+    rounding: int = 0  # base to which counts are rounded instead of being withheld; 0: withhold
+
+
+@dataclass(frozen=True, slots=True)
+class Policy:
+    """The terms a collection is released under since `made`; a change is a new number."""
+
+    number: int
+    terms: Terms
+    made: dt.datetime
+    by: str
+    note: str
+
+
+@dataclass(frozen=True, slots=True)
+class Hidden:
+    """What of one schedule is not shown, and what stands in for it in figures."""
+
+    ages: tuple[int, ...]  # starts of the groups withheld; -1: the sum over age
+    values: tuple[float, ...]  # worked out from what is shown, never the counts
+    starts: tuple[int, ...] = ()  # coarser groups it is given by; empty: its own
+    rounded: bool = False  # the values are shown: counts to a base
+
+
+Mask = Mapping[Key, Hidden]
 
 
 @dataclass(frozen=True, slots=True)

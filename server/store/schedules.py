@@ -1,11 +1,12 @@
 """Schedules: vectors over age, read in one statement however many."""
 
+from collections.abc import Iterable
 from dataclasses import dataclass
 from functools import lru_cache
 from typing import Any
 
 import numpy as np
-from sqlalchemy import func, select
+from sqlalchemy import Select, func, select
 from sqlalchemy.orm import Session
 from sqlalchemy.sql import ColumnElement
 
@@ -35,7 +36,12 @@ def load(
 
     What there is not is left out: the caller knows what it asked for.
     """
-    rows = session.execute(
+    return of_rows(session.execute(statement(collection, number, selection)))
+
+
+def statement(collection: str, number: int, selection: Selection) -> Select[*tuple[Any, ...]]:
+    """Reads the selected schedules of an edition; `of_rows` makes them of what it gives."""
+    return (
         select(
             Schedule.area,
             Schedule.sex,
@@ -53,7 +59,11 @@ def load(
             Schedule.holds_in(number),
             *chosen(selection),
         )
-    ).all()
+    )
+
+
+def of_rows(rows: Iterable[Any]) -> dict[Key, Vector]:
+    """Schedules from rows of `statement`."""
     return {
         Key(*row[:5]): Vector(row.status, grid_of(row.starts), unpacked(row.vector), row.estimated)
         for row in sorted(rows, key=lambda row: row[:5])

@@ -1,0 +1,92 @@
+"""Masks of editions: made before any lock is taken, written in the same transaction as these."""
+
+import datetime as dt
+from dataclasses import dataclass
+
+from server.disclosure.masking import Content, mask
+from server.store import areas, changes, editions, masks, policies
+from server.store.connect import Session
+from server.store.errors import Stale
+from server.store.masks import Kept
+from server.store.records import Area, Change, Key, Policy, Selection, Terms, Vector
+
+
+@dataclass(frozen=True, slots=True)
+class Masked:
+    """The mask of an edition that is about to be made."""
+
+    policy: Policy
+    kept: Kept
+    known: tuple[int, ...]  # editions it was made beside
+
+
+def mask_of(session: Session, change: Change) -> Masked | None:
+    """What of the edition to be is withheld; None where the collection has no policy."""
+    policy = policies.newest(session, change.collection)
+    if policy is None:
+        return None
+    known = [one.number for one in editions.listing(session, change.collection)]
+    stood = areas.listing(session, change.collection, change.base) if change.base else ()
+    touched = {key.period for key in (*change.cells, *change.ended)}
+    whole = change.replace or _tree(stood) != _tree(change.areas)
+    chosen = Selection(periods=None if whole else tuple(sorted(touched)), cause=None)
+    history = changes.versions(session, change.collection, max(known, default=0), chosen)
+    trees = changes.tree(session, change.collection, known)
+    before = masks.of_editions(session, change.collection, policy.number)
+    earlier = [
+        Content(trees[number], _held(history, number), before[number].mask)
+        for number in sorted(known)
+    ]
+    base = {} if change.replace or not change.base else _held(history, change.base)
+    cells = {key: cell for key, cell in base.items() if key not in change.ended}
+    made = mask(change.areas, cells | dict(change.cells), policy.terms, earlier)
+    kept = dict(made.mask)
+    if not whole and change.base:
+        stays = before[change.base].mask
+        kept |= {key: one for key, one in stays.items() if key.period not in touched}
+    return Masked(policy, Kept(kept, made.exposed, made.narrow), tuple(sorted(known)))
+
+
+def keep(
+    session: Session, change: Change, number: int, masked: Masked | None, *, at: dt.datetime
+) -> None:
+    """Write the mask of the edition just made, inside its transaction. Raises: Stale where the
+    policy, or an edition it was made beside, is another by now."""
+    policy = policies.newest(session, change.collection)
+    before = tuple(
+        sorted(
+            one.number
+            for one in editions.listing(session, change.collection)
+            if one.number != number
+        )
+    )
+    if masked is None and policy is None:
+        return
+    if masked is None or policy != masked.policy or before != masked.known:
+        raise Stale(max(masked.known, default=0) if masked else 0, max(before, default=0))
+    masks.write(session, change.collection, number, policy.number, masked.kept, at=at)
+
+
+def masks_under(session: Session, collection: str, terms: Terms) -> dict[int, Kept]:
+    """The masks of all editions as these terms would have them, by number."""
+    numbers = sorted(one.number for one in editions.listing(session, collection))
+    history = changes.versions(session, collection, max(numbers, default=0), Selection(cause=None))
+    trees = changes.tree(session, collection, numbers)
+    earlier: list[Content] = []
+    found: dict[int, Kept] = {}
+    for number in numbers:
+        cells = _held(history, number)
+        made = mask(trees[number], cells, terms, earlier)
+        earlier.append(Content(trees[number], cells, made.mask))
+        found[number] = Kept(made.mask, made.exposed, made.narrow)
+    return found
+
+
+def _held(history: dict[Key, tuple[changes.Held, ...]], number: int) -> dict[Key, Vector]:
+    return {
+        key: one.vector for key, ones in history.items() for one in ones if one.holds_in(number)
+    }
+
+
+def _tree(of: tuple[Area, ...]) -> set[tuple[str, str, bool]]:
+    return {(one.code, one.parent, one.delivered) for one in of}

@@ -1,0 +1,75 @@
+"""Set what a collection's small counts are released under: every edition gets its mask anew."""
+
+import datetime as dt
+
+from server.accounts.viewer import Right, Viewer
+from server.actions.masking import masks_under
+from server.store import collections, editions, masks, policies
+from server.store.connect import Session, transaction
+from server.store.errors import Refused, Stale
+from server.store.masks import Kept
+from server.store.records import Policy, Terms
+
+LARGEST_THRESHOLD = 100
+LEAST_THRESHOLD = 2
+
+
+def set_policy(
+    session: Session, *, collection: str, terms: Terms, note: str, by: Viewer, now: dt.datetime
+) -> Policy:
+    """The next policy of the collection with the masks of all its editions. What was shown until
+    now may be withheld from now on.
+
+    Raises: NotAllowed; Missing; Refused where the terms cannot be or the note is empty; Stale where
+    an edition was made meanwhile.
+    """
+    by.require(Right.ADMINISTER)
+    _require_possible(terms)
+    if not note.strip():
+        raise Refused(
+            "A policy needs a note. Say why these terms; whoever reads the collection will see it."
+        )
+    collections.find(session, collection)
+    made = masks_under(session, collection, terms)
+    with transaction(session):
+        policy = policies.write(session, collection, terms, by=by.name, note=note.strip(), at=now)
+        there = {one.number for one in editions.listing(session, collection)}
+        if there != set(made):
+            raise Stale(max(made, default=0), max(there, default=0))
+        for number, kept in made.items():
+            masks.write(session, collection, number, policy.number, kept, at=now)
+    return policy
+
+
+def effect_of(session: Session, collection: str, terms: Terms) -> dict[int, Kept]:
+    """What these terms would withhold, by edition; nothing is written. Raises: Missing, Refused."""
+    _require_possible(terms)
+    collections.find(session, collection)
+    return masks_under(session, collection, terms)
+
+
+def _require_possible(terms: Terms) -> None:
+    for name, value in (("threshold", terms.threshold), ("persons", terms.persons)):
+        least = LEAST_THRESHOLD if name == "threshold" else 0
+        if not least <= value <= LARGEST_THRESHOLD:
+            raise Refused(
+                "The {name} of a policy is {value}; it can be {least} to {most}.",
+                name=name,
+                value=value,
+                least=least,
+                most=LARGEST_THRESHOLD,
+            )
+    if terms.zeros not in ("shown", "withheld"):
+        raise Refused(
+            "Zeros are {value}; they can be shown or withheld.",
+            value=terms.zeros,
+        )
+    if terms.coarse_below < 0:
+        raise Refused(
+            "The size of areas cannot be below 0; found {value}.", value=terms.coarse_below
+        )
+    if terms.rounding not in (0, 3, 5, 10):
+        raise Refused(
+            "Counts are rounded to {value}; the base can be 3, 5 or 10, or 0 for none.",
+            value=terms.rounding,
+        )

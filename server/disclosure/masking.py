@@ -1,0 +1,220 @@
+"""One mask for all that an edition holds, under the terms of its collection."""
+
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from engine.ages import AgeGrid, Array
+from server.disclosure.blocks import SEXES, TOTAL, Block, Bools, block
+from server.disclosure.closing import close
+from server.disclosure.equations import equations
+from server.disclosure.history import State, fresh_of, leaking, withheld_before
+from server.disclosure.standing_in import stand_ins
+from server.store.records import Area, Hidden, Key, Mask, Terms, Vector
+
+Cells = Mapping[Key, Vector]
+# people before deaths, since deaths of too few people are withheld; what each is judged by
+MEASURES = ("person_years", "births", "deaths", "stillbirths", "neonatal_deaths")
+PEOPLE = ("person_years", "births")
+
+
+@dataclass(frozen=True, slots=True)
+class Content:
+    """What an edition holds and did not show."""
+
+    areas: tuple[Area, ...]
+    cells: Cells
+    mask: Mask
+
+
+@dataclass(frozen=True, slots=True)
+class Made:
+    """A mask; of the counts in it that small ones, how many could not be protected as asked."""
+
+    mask: Mask
+    exposed: int  # may be worked out all the same: no other count could protect them
+    narrow: int  # may be told apart from some counts below the threshold
+
+
+def mask(
+    areas: tuple[Area, ...], cells: Cells, terms: Terms, earlier: Sequence[Content] = ()
+) -> Made:
+    """What is withheld of an edition of these areas and counts, when `earlier` editions of the
+    collection were shown as they were. A year that is as in one of them is shown as there."""
+    shaped = coarsened(areas, cells, terms)
+    by_period, before = _periods(shaped), [_periods(one.cells) for one in earlier]
+    masks = [_hidden_periods(one.mask) for one in earlier]
+    found: dict[Key, Hidden] = {}
+    exposed = narrow = 0
+    for period, own in sorted(by_period.items()):
+        states = [
+            State(one.areas, coarsened(one.areas, part, terms), hidden.get(period, {}))
+            for one, parts, hidden in zip(earlier, before, masks, strict=True)
+            if (part := parts.get(period))
+        ]
+        same = next((one for one in states[::-1] if one.same_as(areas, own)), None)
+        if same is not None:
+            found |= same.mask
+            continue
+        made = _of_period(areas, period, own, terms, _distinct(states))
+        found |= made.mask
+        exposed, narrow = exposed + made.exposed, narrow + made.narrow
+    for key, vector in shaped.items():
+        if vector.grid != cells[key].grid:
+            known = found.get(key, Hidden((), ()))
+            found[key] = replace(known, starts=vector.grid.starts)
+    return Made(found, exposed, narrow)
+
+
+def coarsened(areas: Iterable[Area], cells: Cells, terms: Terms) -> Cells:
+    """Counts of areas with few people on five-year groups, everything else as it is."""
+    if not terms.coarse_below:
+        return cells
+    people: dict[tuple[str, str], float] = {}
+    for key, vector in cells.items():
+        if key.measure == "person_years":
+            place = (key.area, key.period)
+            most = float(vector.values.sum())
+            people[place] = max(people.get(place, 0.0), most if key.sex == "p" else 2 * most)
+    small = {place for place, lived in people.items() if lived < terms.coarse_below}
+    out = dict(cells)
+    for key, vector in cells.items():
+        if (key.area, key.period) in small:
+            starts = tuple(s for s in vector.grid.starts if s in (0, 1) or s % 5 == 0)
+            grid = AgeGrid(starts)
+            out[key] = replace(vector, grid=grid, values=vector.grid.regroup(vector.values, grid))
+    return out
+
+
+def _periods(cells: Cells) -> dict[str, dict[Key, Vector]]:
+    found: dict[str, dict[Key, Vector]] = {}
+    for key, vector in cells.items():
+        if not key.cause:
+            found.setdefault(key.period, {})[key] = vector
+    return found
+
+
+def _hidden_periods(mask: Mask) -> dict[str, dict[Key, Hidden]]:
+    found: dict[str, dict[Key, Hidden]] = {}
+    for key, hidden in mask.items():
+        found.setdefault(key.period, {})[key] = hidden
+    return found
+
+
+def _distinct(states: Sequence[State]) -> list[State]:
+    kept: list[State] = []
+    for one in states:
+        if not any(one.same_as(other.areas, other.cells) for other in kept):
+            kept.append(one)
+    return kept
+
+
+def _of_period(
+    areas: tuple[Area, ...], period: str, cells: Cells, terms: Terms, states: Sequence[State]
+) -> Made:
+    found: dict[Key, Hidden] = {}
+    exposed = narrow = 0
+    few: dict[tuple[str, int, int], Bools] = {}  # slots of too few people
+    for measure in MEASURES:
+        threshold = terms.persons if measure in PEOPLE else terms.threshold
+        if not threshold:
+            continue
+        counted = "counted_deaths" if measure == "deaths" else ""
+        of = block(areas, period, measure, cells, counted=counted)
+        primary = _primary(of, threshold, zeros=terms.zeros == "shown" or measure in PEOPLE)
+        if measure == "deaths":
+            primary |= _of_few(of, few)
+        if measure == "neonatal_deaths":
+            primary |= _few_later(of, period, cells, threshold)
+        sticky = withheld_before(of, period, measure, states)
+        if not (primary.any() or sticky.any()):
+            continue
+        fresh = fresh_of(of, period, measure, states)
+        done = close(of, primary, sticky, fresh, threshold)
+        left = 0
+        if states and leaking(of, done.hidden, period, measure, states):
+            done.hidden |= fresh & of.held  # nothing new is shown of such a year
+            left = leaking(of, done.hidden, period, measure, states)
+        exposed, narrow = exposed + max(len(done.exposed), left), narrow + len(done.narrow)
+        if measure == "person_years":
+            few = {key: done.hidden[slot] for key, slot in of.keys().items()}
+        stand = stand_ins(of, done.hidden, equations(of), max(threshold / 2, 1.0))
+        found |= _by_schedule(of, period, measure, done.hidden, stand)
+    found |= _of_the_same_people(cells, found)
+    return Made(found, exposed, narrow)
+
+
+def _primary(of: Block, threshold: float, *, zeros: bool) -> Bools:
+    with np.errstate(invalid="ignore"):
+        few = of.held & (of.least < threshold)
+        return few if zeros else few | (of.held & (of.values == 0) & (threshold > 0))
+
+
+def _of_few(of: Block, few: Mapping[tuple[str, int, int], Bools]) -> Bools:
+    found = np.zeros_like(of.held)
+    for key, slot in of.keys().items():
+        if key in few:
+            found[slot] = few[key]
+    return found & of.held
+
+
+def _few_later(of: Block, period: str, cells: Cells, threshold: float) -> Bools:
+    """Where few infants died after their first 28 days, which a difference would tell."""
+    found = np.zeros_like(of.held)
+    for slot, place in enumerate(of.area.tolist()):
+        for sex, code in enumerate(SEXES):
+            deaths = cells.get(Key(of.areas[place].code, code, period, "deaths"))
+            if deaths is not None and deaths.grid.has(1) and of.held[slot, sex]:
+                later = float(deaths.values[0] - of.values[slot, sex])
+                found[slot, sex] = 0 < later < threshold
+    return found
+
+
+def _by_schedule(
+    of: Block, period: str, measure: str, hidden: Bools, stand: Array
+) -> dict[Key, Hidden]:
+    found: dict[Key, Hidden] = {}
+    rows: dict[int, list[int]] = {}
+    for slot in np.flatnonzero(hidden.any(axis=1)).tolist():
+        rows.setdefault(int(of.area[slot]), []).append(slot)
+    for place, slots in rows.items():
+        for sex in range(3):
+            own = [slot for slot in slots if hidden[slot, sex]]
+            if not own:
+                continue
+            ages: list[int] = []
+            values: list[float] = []
+            for slot in own:
+                inside = _inside(of, place, sex, slot)
+                ages += inside
+                values += [float(stand[slot, sex]) / len(inside)] * len(inside)
+            key = Key(of.areas[place].code, SEXES[sex], period, measure)
+            found[key] = Hidden(tuple(ages), tuple(round(value, 6) for value in values))
+    return found
+
+
+def _inside(of: Block, place: int, sex: int, slot: int) -> list[int]:
+    """Starts of the schedule's own groups within a slot."""
+    start, stop = int(of.start[slot]), int(of.stop[slot])
+    if start == TOTAL:
+        return [TOTAL]
+    own = of.grids[(place, sex)].starts
+    return [one for one in own if one >= start and (stop < 0 or one < stop)]
+
+
+def _of_the_same_people(cells: Cells, found: Mapping[Key, Hidden]) -> dict[Key, Hidden]:
+    """Counts from which chance is told are withheld with those they stand behind, at the share of
+    them that is counted at the ages shown."""
+    out: dict[Key, Hidden] = {}
+    for key, hidden in found.items():
+        beside = replace(key, measure="counted_deaths")
+        if key.measure != "deaths" or beside not in cells:
+            continue
+        counted, deaths = cells[beside], cells[key]
+        gone = np.isin(counted.grid.starts, hidden.ages)
+        own = np.isin(deaths.grid.starts, hidden.ages)
+        total = float(deaths.values[~own].sum())
+        share = min(float(counted.values[~gone].sum()) / total, 1.0) if total > 0 else 1.0
+        out[beside] = replace(hidden, values=tuple(share * value for value in hidden.values))
+    return out

@@ -1,0 +1,150 @@
+"""Masks: what of an edition is withheld under a policy. Made once, never updated."""
+
+import datetime as dt
+import hashlib
+import json
+import zlib
+from collections.abc import Mapping as Lookup
+from dataclasses import dataclass
+from functools import lru_cache
+from typing import Any
+
+from sqlalchemy import Select, String, and_, cast, false, func, insert, literal, select, union_all
+from sqlalchemy.orm import Session
+
+from server.store import collections, schedules, tables
+from server.store.errors import Refused
+from server.store.policies import read
+from server.store.records import Hidden, Key, Mask, Selection, Terms, Vector
+
+
+@dataclass(frozen=True, slots=True)
+class Kept:
+    """A mask as it is stored. `exposed`, `narrow`: small counts not protected as was asked."""
+
+    mask: Mask
+    exposed: int = 0
+    narrow: int = 0
+
+    @property
+    def cells(self) -> int:
+        """How many counts are withheld; sums over age are none of them."""
+        return sum(age >= 0 for one in self.mask.values() if not one.rounded for age in one.ages)
+
+
+@dataclass(frozen=True, slots=True)
+class Protected:
+    """The terms an edition is released under, and its mask."""
+
+    terms: Terms
+    kept: Kept
+
+
+_MASK = "mask"  # measure of the row that brings the mask along
+
+
+def released(
+    session: Session, collection: str, edition: int, selection: Selection
+) -> tuple[dict[Key, Vector], Protected | None]:
+    """The selected schedules of an edition as they are, and what protects them under the policy
+    that holds (None: there is no policy). One statement, so that nobody reads the one without the
+    other. Raises: Refused where the policy has no mask for the edition: nothing can be shown."""
+    both = union_all(
+        schedules.statement(collection, edition, selection), _mask(collection, edition)
+    )
+    rows = session.execute(both).all()
+    cells = schedules.of_rows(row for row in rows if row.measure != _MASK)
+    found = next((row for row in rows if row.measure == _MASK), None)
+    if found is None:
+        return cells, None
+    if not found.vector:
+        raise Refused(
+            "Edition {edition} has no mask under the policy that holds, so that nothing of it can"
+            " be released. Set the policy of {collection} again.",
+            edition=edition,
+            collection=collection,
+        )
+    return cells, Protected(read(found.status), unpacked(found.vector))
+
+
+def _mask(collection: str, edition: int) -> Select[*tuple[Any, ...]]:
+    """The mask under the newest policy, as a row in the columns of schedules."""
+    policy, mask = tables.Policy, tables.Mask
+    of = collections.id_of(collection)
+    newest = select(func.max(policy.number)).where(policy.collection_id == of).scalar_subquery()
+    empty = cast(literal(""), String)
+    return (
+        select(
+            empty.label("area"),
+            empty.label("sex"),
+            empty.label("period"),
+            cast(literal(_MASK), String).label("measure"),
+            empty.label("cause"),
+            policy.terms.label("status"),
+            empty.label("starts"),
+            mask.content.label("vector"),
+            false().label("estimated"),
+        )
+        .outerjoin(
+            mask,
+            and_(
+                mask.collection_id == policy.collection_id,
+                mask.policy == policy.number,
+                mask.edition == edition,
+            ),
+        )
+        .where(policy.collection_id == of, policy.number == newest)
+    )
+
+
+def of_editions(session: Session, collection: str, policy: int) -> dict[int, Kept]:
+    """The masks of all editions under one policy, by number. One statement."""
+    row = tables.Mask
+    rows = session.execute(
+        select(row.edition, row.content).where(
+            row.collection_id == collections.id_of(collection), row.policy == policy
+        )
+    ).all()
+    return {one.edition: unpacked(one.content) for one in sorted(rows, key=lambda one: one.edition)}
+
+
+def write(
+    session: Session, collection: str, edition: int, policy: int, kept: Kept, *, at: dt.datetime
+) -> None:
+    """Keep a mask, inside a transaction."""
+    content = packed(kept)
+    session.execute(
+        insert(tables.Mask).values(
+            collection_id=collections.id_of(collection),
+            edition=edition,
+            policy=policy,
+            digest=hashlib.sha256(zlib.decompress(content)).hexdigest(),
+            content=content,
+            made=at,
+        )
+    )
+
+
+def packed(kept: Kept) -> bytes:
+    """One spelling for each mask."""
+    rows: list[list[Any]] = [
+        [*_codes(key), list(one.ages), list(one.values), list(one.starts), one.rounded]
+        for key, one in sorted(kept.mask.items())
+    ]
+    text = json.dumps({"exposed": kept.exposed, "narrow": kept.narrow, "hidden": rows})
+    return zlib.compress(text.encode(), 6)
+
+
+def _codes(key: Key) -> tuple[str, ...]:
+    return key.area, key.sex, key.period, key.measure, key.cause
+
+
+@lru_cache(maxsize=16)
+def unpacked(content: bytes) -> Kept:
+    """The mask in stored bytes. (Many pages ask for the same one.)"""
+    stored: Lookup[str, Any] = json.loads(zlib.decompress(content))
+    mask = {
+        Key(*row[:5]): Hidden(tuple(row[5]), tuple(row[6]), tuple(row[7]), row[8])
+        for row in stored["hidden"]
+    }
+    return Kept(mask, stored["exposed"], stored["narrow"])
