@@ -250,16 +250,20 @@ def counts_csv(
 
 def checked_upload(
     session: Session,
-    content: bytes,
+    content: bytes = b"",
     *,
     mapping: intake.Mapping = COLUMNS,
     collection: str = "saltmarsh",
     basis: Basis = BASIS,
+    role: str = "counts",
+    **lists: str,
 ) -> records.Upload:
-    """A draft that was received, mapped and checked."""
-    files = [("counts", "counts.csv", content)]
+    """A draft that was received, mapped and checked; `lists` are its small tables by role."""
+    files = [(role, f"{role}.csv", content)] if content else []
+    files += [(name, f"{name}.csv", table.encode()) for name, table in lists.items()]
     upload = receive_upload(session, collection=collection, files=files, by=LOCAL, now=NOON)
-    mappings = {"counts": mapping}
+    mappings = {role: mapping} if content else {}
+    mappings |= dict.fromkeys(lists, intake.Mapping())
     map_upload(session, upload_id=upload.id, mappings=mappings, basis=basis, by=LOCAL, now=NOON)
     check_upload(session, upload_id=upload.id)
     return uploads.find(session, upload.id)

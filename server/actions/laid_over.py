@@ -45,25 +45,44 @@ def made_of(parsed: Parsed, taking: Taking, base: Base) -> Made:
     old = base.load(Selection(areas=said.codes, cause=None)) if said and base.areas else {}
     before = recoded(old, said)
     cells = _laid(before.made, cells, recoded(cells, said))
-    areas, ended = listed(areas, said, {*old.keys() - before.gone, *cells})
+    known = {area.code: area for area in (*base.areas, *areas)}
+    areas, ended = listed(areas, said, {*old.keys() - before.gone, *cells}, known)
     kept = tuple(area for area in base.areas if area.code not in ended)
 
     def load(periods: tuple[str, ...] | None) -> Cells:
         found = base.load(Selection(periods=periods, cause=None))
         return {key: cell for key, cell in found.items() if key not in before.gone}
 
-    summed = totals.laid_over(cells, areas, base_areas=kept, load=load, taking=taking)
+    new = breaks.in_order((*breaks.new(parsed.breaks), *_carried(base.breaks, said, ended)))
+    gone = (
+        *breaks.ended(parsed.breaks, base.breaks),
+        *(one for one in base.breaks if one.area in ended),
+    )
+    summed = totals.laid_over(
+        cells,
+        areas,
+        base_areas=kept,
+        load=load,
+        taking=taking,
+        boundaries=_boundaries((*(one for one in base.breaks if one not in gone), *new)),
+    )
     return Made(
         cells=summed.cells,
         areas=summed.areas,
         ended=(summed.ended | before.gone) - summed.cells.keys(),
         ended_areas=ended & {area.code for area in base.areas},
-        breaks=breaks.in_order((*breaks.new(parsed.breaks), *_carried(base.breaks, said, ended))),
-        ended_breaks=(
-            *breaks.ended(parsed.breaks, base.breaks),
-            *(one for one in base.breaks if one.area in ended),
-        ),
+        breaks=new,
+        ended_breaks=gone,
     )
+
+
+def _boundaries(held: Iterable[Break]) -> dict[str, tuple[str, ...]]:
+    """Years of breaks of boundaries, by area."""
+    found: dict[str, tuple[str, ...]] = {}
+    for one in held:
+        if one.kind == "boundary" and one.area:
+            found[one.area] = (*found.get(one.area, ()), one.period)
+    return found
 
 
 def _laid(before: Cells, cells: Cells, handed: Recoded) -> dict[Key, Vector]:

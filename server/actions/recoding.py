@@ -83,17 +83,23 @@ def _require_optional(new: Key, lacking: list[str]) -> None:
         )
 
 
+def _common_whole(new: str, said: Successions, known: Mapping[str, Area]) -> str:
+    """The whole that the codes share of which a new one is made; empty where they share none."""
+    old = {one.code for one in said.of if new in one.becomes and one.code != new}
+    wholes = {known[code].parent for code in old if code in known}
+    return wholes.pop() if len(wholes) == 1 else ""
+
+
 def listed(
-    areas: Iterable[Area], said: Successions, left: Iterable[Key]
+    areas: Iterable[Area], said: Successions, left: Iterable[Key], known: Mapping[str, Area]
 ) -> tuple[tuple[Area, ...], frozenset[str]]:
     """Areas without the old codes that have no counts left, with the new ones; and the codes that
-    ended."""
+    ended. A new code belongs where it is said to, else where the codes do that it comes from."""
     codes = {key.area for key in left} | {area.code for area in said.areas}
     ended = frozenset(said.codes) - codes
     kept = {area.code: area for area in areas if area.code not in ended}
     for area in said.areas:
-        before = kept.get(area.code, area)
-        kept[area.code] = replace(
-            before, name=area.name or before.name, parent=area.parent or before.parent
-        )
+        before = kept.get(area.code) or known.get(area.code, area)
+        parent = area.parent or before.parent or _common_whole(area.code, said, known)
+        kept[area.code] = replace(before, name=area.name or before.name, parent=parent)
     return tuple(kept.values()), ended

@@ -13,6 +13,10 @@ from server.store.records import ALL_OF_IT, Area, Key, Taking, Vector
 
 Cells = Mapping[Key, Vector]
 Slice = tuple[str, str, str, str]  # sex, period, measure, cause: what is summed over areas
+Slices = dict[Slice, Vector]
+Boundaries = Mapping[str, tuple[str, ...]]
+NO_BOUNDARIES: Boundaries = {}
+DEATHS, COUNTED = "deaths", "counted_deaths"
 
 
 @dataclass(frozen=True, slots=True)
@@ -29,17 +33,18 @@ def laid_over(
     base_areas: tuple[Area, ...],
     load: Callable[[tuple[str, ...] | None], Cells],
     taking: Taking = ALL_OF_IT,
+    boundaries: Boundaries = NO_BOUNDARIES,
 ) -> Totalled:
     """What was handed in with its totals, over a base of which some gives way to it; `load` gives
     the base's schedules of some periods (None: of all). Raises: Refused, as `merged` and `totalled`
     do."""
     listed = merged(areas, base_areas)
-    every_year = taking.gives_way == "areas"
+    every_year = taking.gives_way == "areas" or bool(boundaries)
     needed = None if every_year else periods_needed(handed, listed, base_areas)
     base = load(needed) if base_areas else {}
     gone = giving_way(base, handed, taking)
     kept = {key: cell for key, cell in base.items() if key not in gone}
-    made = totalled(handed, listed, base=kept, base_areas=base_areas)
+    made = totalled(handed, listed, base=kept, base_areas=base_areas, boundaries=boundaries)
     return replace(made, ended=made.ended | (gone - made.cells.keys()))
 
 
@@ -91,16 +96,23 @@ def periods_needed(
 
 
 def totalled(
-    handed: Cells, areas: tuple[Area, ...], *, base: Cells, base_areas: tuple[Area, ...] = ()
+    handed: Cells,
+    areas: tuple[Area, ...],
+    *,
+    base: Cells,
+    base_areas: tuple[Area, ...] = (),
+    boundaries: Boundaries = NO_BOUNDARIES,
 ) -> Totalled:
     """What was handed in, laid over the base, with its totals.
 
     Persons are women and men together where both stand. An area that has parts and
     is not delivered is the sum of all its parts on their common age groups, or not available where
     a part is missing; what was handed in for it must agree with the sum. A sum is provisional
-    where a part of it is.
+    or estimated where a part of it is.
 
     `areas` are those of the new edition in tree order; `base` holds the periods needed.
+    `boundaries` are the years of breaks of boundaries by area: a part whose series ends or begins
+    there is not missed beyond.
     Raises: ValueError where a schedule is of no known area; Refused where persons were handed in
     beside women and men that stand, or counts for an area that has parts, is not delivered, and
     cannot be summed or is not the sum.
@@ -119,7 +131,7 @@ def totalled(
         by_area.setdefault(key.area, {})[_slice(key)] = cell
     for whole in reversed(areas):  # parts before their whole
         if whole.code in summed:
-            sums = _sums([by_area.get(part, {}) for part in parts[whole.code]])
+            sums = _sums({part: by_area.get(part, {}) for part in parts[whole.code]}, boundaries)
             by_area[whole.code] = sums
             made.update(
                 (Key(whole.code, sex, period, measure, cause), cell)
@@ -148,7 +160,7 @@ def total(cells: list[Vector]) -> Vector:
     for cell in cells[1:]:
         values = values + cell.grid.regroup(cell.values, grid)
     status = "provisional" if any(cell.status == "provisional" for cell in cells) else "final"
-    return Vector(status, grid, values)
+    return Vector(status, grid, values, any(cell.estimated for cell in cells))
 
 
 def _require_sum(key: Key, handed: Vector, made: Vector, parts: int) -> None:
@@ -184,14 +196,47 @@ def _persons(own: Cells, standing: Cells) -> dict[Key, Vector]:
                 area=persons.area,
                 period=persons.period,
             )
-        if women and men:
+        if women and men and persons.measure != COUNTED:
             made[persons] = total([women, men])
+        beside = [standing.get(replace(persons, sex=sex, measure=COUNTED)) for sex in ("f", "m")]
+        if women and men and persons.measure == DEATHS and any(beside):
+            both = list(zip((women, men), beside, strict=True))
+            made[replace(persons, measure=COUNTED)] = _counted(both)
     return made
 
 
-def _sums(parts: list[dict[Slice, Vector]]) -> dict[Slice, Vector]:
-    shared = set.intersection(*(set(part) for part in parts))
-    return {which: total([part[which] for part in parts]) for which in sorted(shared)}
+def _sums(parts: dict[str, Slices], boundaries: Boundaries) -> Slices:
+    """Sums of the slices that no part lacks; but for parts that have ended or not yet begun."""
+    held = {code: [period for _, period, *_ in part] for code, part in parts.items()}
+    absent = {code: _absent(boundaries.get(code, ()), held[code]) for code in parts}
+    sums: Slices = {}
+    for which in sorted(set[Slice]().union(*parts.values())):
+        sex, period, measure, cause = which
+        lacking = [code for code, part in parts.items() if which not in part]
+        if measure == COUNTED or not all(absent[code](period) for code in lacking):
+            continue
+        there = [part for code, part in parts.items() if code not in lacking]
+        sums[which] = total([part[which] for part in there])
+        beside = (sex, period, COUNTED, cause)
+        if measure == DEATHS and any(beside in part for part in there):
+            counted = _counted([(part[which], part.get(beside)) for part in there])
+            # parts of one split carry the same deaths: together no more than there are
+            most = np.minimum(counted.values, sums[which].values)
+            sums[beside] = replace(counted, values=most)
+    return sums
+
+
+def _absent(years: Iterable[str], held: list[str]) -> Callable[[str], bool]:
+    """In which years there is no such part: it ends, or begins, at a break of boundaries."""
+    first, last = min(held, default=""), max(held, default="")
+    ends = min((year for year in years if last < year), default="9999")
+    begins = max((year for year in years if first >= year), default="0000")
+    return lambda period: bool(held) and not begins <= period < ends
+
+
+def _counted(parts: list[tuple[Vector, Vector | None]]) -> Vector:
+    """Deaths as they were counted, where `deaths` beside them may be shared out."""
+    return total([deaths if counted is None else counted for deaths, counted in parts])
 
 
 def _parts(areas: Iterable[Area]) -> dict[str, list[str]]:

@@ -67,7 +67,7 @@ def told(
         if table.role == "areas":
             rows = successions.read_lines(table)
             problems += listed.of_areas(table, rows)
-            said = successions.successions(rows, listed.known.values())
+            said = successions.successions(rows)
             sound += len(rows)
         else:
             numbered = break_rows.read_lines(table)

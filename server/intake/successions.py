@@ -209,15 +209,14 @@ def is_new_series(rows: tuple[Becoming, ...]) -> bool:
     return len({one.becomes for one in rows}) > 1 and all(one.share is None for one in rows)
 
 
-def successions(rows: tuple[Becoming, ...], standing: Iterable[Area]) -> Successions:
-    """What rows without faults say. A new code's whole is the one stated, else that of the codes
-    it comes from, where they share one."""
+def successions(rows: tuple[Becoming, ...]) -> Successions:
+    """What rows without faults say."""
     found = []
     for (code, first, last), run in runs(rows).items():
         becomes = tuple(dict.fromkeys(one.becomes for one in run))
         shares = () if is_new_series(run) else tuple(_shares(run))
         found.append(Succession(code, first, last, becomes, shares))
-    return Successions(tuple(found), _areas(rows, {area.code: area for area in standing}))
+    return Successions(tuple(found), _areas(rows))
 
 
 def _shares(run: tuple[Becoming, ...]) -> Iterable[Share]:
@@ -228,14 +227,12 @@ def _shares(run: tuple[Becoming, ...]) -> Iterable[Share]:
             yield Share(becomes, counts, sex, grid, values)
 
 
-def _areas(rows: tuple[Becoming, ...], known: Mapping[str, Area]) -> tuple[Area, ...]:
+def _areas(rows: tuple[Becoming, ...]) -> tuple[Area, ...]:
+    """The new codes with the names and wholes that are stated."""
     made = []
     for code in sorted({one.becomes for one in rows}):
         own = [one for one in rows if one.becomes == code]
         name = next((one.name for one in own if one.name), "")
         parent = next((one.parent for one in own if one.parent), "")
-        wholes = {known[one.code].parent for one in own if one.code in known}
-        if not parent and len(wholes) == 1:
-            parent = wholes.pop()
         made.append(Area(code, name, parent))
     return tuple(made)

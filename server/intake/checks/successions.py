@@ -40,7 +40,7 @@ class Said:
 
     @property
     def meant(self) -> Successions:
-        return successions(self.rows, self.areas.values())
+        return successions(self.rows)
 
     def row_of(self, code: str, becomes: str = "") -> Becoming:
         return next(r for r in self.rows if r.code == code and becomes in ("", r.becomes))
