@@ -1,8 +1,8 @@
-"""Throw a draft away, files and all."""
+"""Throw a draft away, files and all, so that their bytes are gone from the database's files."""
 
 from server.accounts.viewer import Right, Viewer
 from server.store import uploads
-from server.store.connect import Session, transaction
+from server.store.connect import Session, scrub, transaction
 
 
 def discard_upload(session: Session, *, upload_id: int, by: Viewer) -> None:
@@ -10,3 +10,4 @@ def discard_upload(session: Session, *, upload_id: int, by: Viewer) -> None:
     by.require(Right.UPLOAD)
     with transaction(session):
         uploads.erase(session, upload_id)
+    scrub(session)

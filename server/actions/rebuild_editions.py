@@ -1,7 +1,7 @@
 """Make every edition anew from the kept bytes, and compare: nothing is written."""
 
 import hashlib
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 from server.accounts.viewer import Right, Viewer
 from server.actions.commit_upload import read
@@ -34,10 +34,21 @@ class Rebuilt:
     reread: str  # hash of the edition made anew from its files; empty where it cannot be
     reason: str = ""  # catalogue text: why it cannot be
     values: dict[str, object] = field(default_factory=dict)  # fill the reason
+    erased: bool = False  # its bytes were erased on demand
+    upon: int = 0  # made anew upon this edition as it is stored, since its bytes were erased
 
     @property
     def same(self) -> bool:
         return self.recorded == self.stored == self.reread
+
+    @property
+    def sound(self) -> bool:
+        """The same, or what is left of it is: storage, where its bytes were erased."""
+        return self.same or (self.erased and self.recorded == self.stored)
+
+
+class BytesErased(Refused):
+    """An edition whose files were emptied at the data owner's demand."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -80,15 +91,20 @@ def rebuild_editions(session: Session, *, collection: str, by: Viewer) -> tuple[
     collections.find(session, collection)
     in_order = editions.listing(session, collection)[::-1]
     contents: dict[int, _Content] = {}
+    upon: dict[int, int] = {}  # edition -> the one it rests on that could only be taken as stored
     report = []
     for place, edition in enumerate(in_order):
-        stored = _stored(session, collection, edition).digest
+        number, stored = edition.number, _stored(session, collection, edition)
+        one = Rebuilt(number, edition.digest, stored.digest, "")
         try:
-            made = contents[edition.number] = _anew(session, edition, contents)
-            report.append(Rebuilt(edition.number, edition.digest, stored, made.digest))
+            made = contents[number] = _anew(session, edition, contents)
+            upon[number] = 0 if edition.replaces else upon.get(edition.base, 0)
+            report.append(replace(one, reread=made.digest, upon=upon[number]))
         except Refused as refused:
-            why = (refused.text, refused.values)
-            report.append(Rebuilt(edition.number, edition.digest, stored, "", *why))
+            erased = isinstance(refused, BytesErased)
+            report.append(replace(one, reason=refused.text, values=refused.values, erased=erased))
+            if report[-1].erased and report[-1].sound:
+                contents[number], upon[number] = stored, number
         still_needed = {later.base for later in in_order[place + 1 :]}
         contents = {number: made for number, made in contents.items() if number in still_needed}
     return tuple(report)
@@ -131,6 +147,14 @@ def _readable(session: Session, edition: Edition) -> tuple[Upload, Basis]:
             now=READER,
         )
     for file in upload.files:
+        if file.erased is not None:
+            raise BytesErased(
+                "The bytes of {file} were erased on {day} by {who}: {why}",
+                file=file.name,
+                day=file.erased.date().isoformat(),
+                who=file.erased_by,
+                why=file.erased_why,
+            )
         content = uploads.file_bytes(session, upload.id, file.role)
         if hashlib.sha256(content).hexdigest() != file.sha256:
             raise Refused(

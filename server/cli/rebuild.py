@@ -20,7 +20,8 @@ def add(commands: Commands) -> None:
         text=_(
             "Reads the files of every edition again, as they were handed in, and compares the hash "
             "of what they give with the one on record. Nothing is written. It ends with code 1 "
-            "where one differs."
+            "where one differs. Where the bytes of an edition were erased, the database alone is "
+            "compared, and editions built on it are made anew upon it as it is stored."
         ),
         examples=("ebbline rebuild", "ebbline rebuild --collection quillmere"),
     )
@@ -38,14 +39,30 @@ def run(asked: argparse.Namespace, config: Config) -> int:
         for code in codes:
             for one in rebuild_editions(session, collection=code, by=LOCAL):
                 print(_line(code, one))
-                same = same and one.same
+                same = same and one.sound
     return 0 if same else 1
 
 
 def _line(collection: str, one: Rebuilt) -> str:
     place = _("{collection}, edition {number}", collection=collection, number=one.number)
+    digest = one.recorded[:12]
+    if one.same and one.upon:
+        return _(
+            "{place}: the same, {digest}, upon edition {base} as it is stored",
+            place=place,
+            digest=digest,
+            base=one.upon,
+        )
     if one.same:
-        return _("{place}: the same, {digest}", place=place, digest=one.recorded[:12])
+        return _("{place}: the same, {digest}", place=place, digest=digest)
+    if one.erased and one.sound:
+        why = _(one.reason, **one.values)
+        return _(
+            "{place}: as recorded in the database, {digest}; it cannot be made anew. {why}",
+            place=place,
+            digest=digest,
+            why=why,
+        )
     if one.reason:
         why = _(one.reason, **one.values)
         return _("{place}: cannot be made anew. {why}", place=place, why=why)

@@ -18,11 +18,13 @@ from server.results.questions import (
 )
 from server.sentences import contents as say
 from server.sentences import names
+from server.sentences import uploads as uploads_say
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
-from server.store import editions
+from server.store import editions, uploads
 from server.store.connect import Session
 from server.store.heading import Heading
+from server.store.records import UploadFile
 
 Options = tuple[tuple[str, str], ...]  # value and label, for a form
 APART = 10  # years between the two that are proposed for a comparison
@@ -65,8 +67,9 @@ def build(session: Session, heading: Heading, question: ContentsQuestion) -> Con
     found = contents(session, heading, question)
     held, collection, edition = found.holdings, heading.collection, heading.edition
     choice = _choice(heading, held) if held.periods else None
+    erased = uploads.erasures(session, collection.code)
     return ContentsPage(
-        frame=_frame(heading, question),
+        frame=_frame(heading, question, erased.get(edition.number, ())),
         answer=say.answer(collection.name, edition.number, held.periods, len(held.areas)),
         lead=lead(found),
         tables=(contents_tables.areas(found, found.newest),) if found.newest else (),
@@ -74,19 +77,21 @@ def build(session: Session, heading: Heading, question: ContentsQuestion) -> Con
         questions=_questions(heading, question, held, choice) if choice else (),
         choice=choice,
         basis=frames.basis(edition.basis),
-        editions=_editions(session, heading),
+        editions=_editions(session, heading, erased),
         standing=_standing(heading),
     )
 
 
-def _editions(session: Session, heading: Heading) -> contents_tables.Listing:
+def _editions(
+    session: Session, heading: Heading, erased: dict[int, tuple[UploadFile, ...]]
+) -> contents_tables.Listing:
     collection = heading.collection
     all_ = editions.listing(session, collection.code)
-    table = contents_tables.editions(collection, all_, heading.newest)
+    table = contents_tables.editions(collection, all_, heading.newest, erased)
     return contents_tables.Listing((table,), contents_tables.editions_twins(collection.code))
 
 
-def _frame(heading: Heading, question: ContentsQuestion) -> Frame:
+def _frame(heading: Heading, question: ContentsQuestion, erased: tuple[UploadFile, ...]) -> Frame:
     frame = frames.pinned(
         heading,
         question,
@@ -94,7 +99,7 @@ def _frame(heading: Heading, question: ContentsQuestion) -> Frame:
         place=phrase(_("contents")),
         figures=question.figures,
         settings=question.settings,
-        notices=_notices(heading, question),
+        notices=(*_notices(heading, question), *_erased(erased)),
     )
     return replace(frame, shown=_("Data owner: {owner}", owner=heading.collection.owner))
 
@@ -110,6 +115,16 @@ def _notices(heading: Heading, question: ContentsQuestion) -> tuple[Notice, ...]
     )
     text = say.superseded(heading.edition.number, newer)
     return (*told, Notice(_("A newer edition stands"), text))
+
+
+def _erased(files: tuple[UploadFile, ...]) -> tuple[Notice, ...]:
+    """That the bytes the edition was made of are no longer kept."""
+    said = [
+        uploads_say.erased(one.erased, one.erased_by, one.erased_why)
+        for one in files
+        if one.erased is not None
+    ]
+    return (Notice(_("Bytes erased"), say.erased(said[0])),) if said else ()
 
 
 def lead(found: Contents) -> tuple[Sentence, ...]:

@@ -1,6 +1,6 @@
 """The tables of a contents page: areas with their newest figures, and the collection's editions."""
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 from dataclasses import asdict, dataclass, field
 
 from engine import settings as named
@@ -15,7 +15,7 @@ from server.sentences import names
 from server.sentences import taking as taking_say
 from server.sentences.dates import day
 from server.sentences.text import _
-from server.store.records import Collection, Edition
+from server.store.records import Collection, Edition, UploadFile
 
 
 @dataclass(frozen=True, slots=True)
@@ -75,7 +75,12 @@ def editions_twins(collection: str) -> dict[str, str]:
     return {twin: f"/c/{collection}/editions.{twin}" for twin in ("csv", "xlsx", "json")}
 
 
-def editions(collection: Collection, all_: Iterable[Edition], newest: int | None) -> Table:
+def editions(
+    collection: Collection,
+    all_: Iterable[Edition],
+    newest: int | None,
+    erased: Mapping[int, tuple[UploadFile, ...]],
+) -> Table:
     """All editions of a collection, newest first. It changes as editions are made and withdrawn."""
     return Table(
         "editions",
@@ -95,7 +100,7 @@ def editions(collection: Collection, all_: Iterable[Edition], newest: int | None
                     day(edition.made),
                     edition.by,
                     edition.note,
-                    did(edition),
+                    did(edition, erased=edition.number in erased),
                     say.standing(
                         stands=edition.number == newest,
                         withdrawn=edition.events[-1].at if edition.withdrawn else None,
@@ -112,8 +117,9 @@ def editions(collection: Collection, all_: Iterable[Edition], newest: int | None
     )
 
 
-def did(edition: Edition) -> str:
-    """What it did to the edition it was built on."""
+def did(edition: Edition, *, erased: bool) -> str:
+    """What it did to the edition it was built on, and whether its bytes are still kept."""
     taking = edition.taking
     took = taking_say.taken(taking.areas, taking.periods, taking.gives_way)
-    return taking_say.did(asdict(edition.effect) if edition.effect else None, took)
+    said = taking_say.did(asdict(edition.effect) if edition.effect else None, took)
+    return _("{said}; bytes erased", said=said) if erased else said

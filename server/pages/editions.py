@@ -8,7 +8,7 @@ from server.pages.page import Frame, Page
 from server.sentences import contents as say
 from server.sentences.pieces import Piece, phrase
 from server.sentences.text import _
-from server.store import collections, editions
+from server.store import collections, editions, uploads
 from server.store.connect import Session
 
 
@@ -23,6 +23,7 @@ class EditionsPage(Page):
 def build(session: Session, code: str) -> EditionsPage:
     collection = collections.find(session, code)
     all_ = editions.listing(session, code)
+    erased = uploads.erasures(session, code)
     standing = next((one.number for one in all_ if not one.withdrawn), None)
     return EditionsPage(
         frame=Frame(
@@ -37,7 +38,7 @@ def build(session: Session, code: str) -> EditionsPage:
             nav="collections",
         ),
         answer=say.editions(collection.name, len(all_), standing),
-        tables=(contents_tables.editions(collection, all_, standing),),
+        tables=(contents_tables.editions(collection, all_, standing, erased),),
         twins=contents_tables.editions_twins(code),
         collection=code,
     )

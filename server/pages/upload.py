@@ -7,6 +7,7 @@ from server.pages.entry import Entry
 from server.pages.page import Frame, Page
 from server.pages.uploads import state
 from server.sentences import reading
+from server.sentences import uploads as say
 from server.sentences.dates import day
 from server.sentences.numbers import whole
 from server.sentences.pieces import Piece, Sentence, phrase
@@ -25,6 +26,7 @@ class UploadPage(Page):
     place: str  # address of the upload
     draft: bool
     checked: bool
+    erased: bool  # nothing of the bytes is left
 
 
 def build(session: Session, upload_id: int) -> UploadPage:
@@ -42,6 +44,7 @@ def build(session: Session, upload_id: int) -> UploadPage:
         place=f"/uploads/{upload.id}",
         draft=upload.edition is None,
         checked=bool(upload.report),
+        erased=all(file.erased for file in upload.files),
     )
 
 
@@ -79,5 +82,13 @@ def _file(file: UploadFile) -> Entry:
             (_("Holds"), reading.role(file.role)),
             (_("Size"), _("{size} bytes", size=whole(file.size))),
             (_("SHA-256"), file.sha256),
+            *_erased(file),
         ),
     )
+
+
+def _erased(file: UploadFile) -> tuple[tuple[str, str], ...]:
+    """That its bytes are no longer kept."""
+    if file.erased is None:
+        return ()
+    return ((_("Erased"), say.erased(file.erased, file.erased_by, file.erased_why)),)

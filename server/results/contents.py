@@ -50,4 +50,4 @@ def contents(session: Session, heading: Heading, question: ContentsQuestion) -> 
         figures=question.figures,
         settings=question.settings,
     ).completed(areas=(), sexes=held.sexes, periods=held.periods)
-    return Contents(heading, question, held, series(session, heading, asked))
+    return Contents(heading, question, held, series(session, heading, asked, held))

@@ -108,13 +108,15 @@ class Series:
         return Estimate.stack([one.change for one in self.courses])
 
 
-def series(session: Session, heading: Heading, question: TrendQuestion) -> Series:
+def series(
+    session: Session, heading: Heading, question: TrendQuestion, held: Holdings | None = None
+) -> Series:
     """All lines and years of a completed question: four statements, one engine call a grid; two
     more statements where a newer edition stands.
 
     Raises: NotInEdition where nothing asked for is held; TooLarge.
     """
-    held = holdings(session, heading.collection.code, heading.edition.number)
+    held = held or holdings(session, heading.collection.code, heading.edition.number)
     settings, indicator = named.find(question.settings), indicators.find(question.of)
     lines, periods = _in_tree_order(held, question), _periods(held, question, settings.years)
     wanted = [PopulationYear(*line, period) for line in lines for period in periods]

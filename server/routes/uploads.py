@@ -12,6 +12,7 @@ from server.actions.commit_upload import commit_upload
 from server.actions.correct_upload import correct_upload
 from server.actions.create_collection import create_collection
 from server.actions.discard_upload import discard_upload
+from server.actions.erase_bytes import erase_bytes
 from server.actions.map_upload import map_upload
 from server.actions.preview_upload import preview_upload
 from server.actions.receive_upload import receive_upload
@@ -214,6 +215,19 @@ def commit(session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep) -
 def discard(session: SessionDep, viewer: ViewerDep, upload: int) -> Response:
     discard_upload(session, upload_id=upload, by=viewer)
     return redirect("/uploads", status=303)
+
+
+@router.post("/uploads/{upload:int}/erase", dependencies=[needs(Right.ADMINISTER)])
+def erase(session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep) -> Response:
+    now, why = dt.datetime.now(dt.UTC), text(form, "why")
+    if not erase_bytes(session, upload_id=upload, why=why, by=viewer, now=now).gone:
+        raise Refusal(
+            409,
+            "Not done",
+            "The bytes were erased from the upload, but somebody was reading, so that a copy may "
+            "stand in the database’s log of writes. Go back and send it again.",
+        )
+    return redirect(f"/uploads/{upload}", status=303)
 
 
 def _limit(request: Request) -> int:

@@ -80,6 +80,17 @@ def superseded(shown_: int, newer: Piece) -> Sentence:
     )
 
 
+def erased(when_and_why: str) -> Sentence:
+    """The bytes an edition was made of are gone; its figures are not."""
+    return phrase(
+        _(
+            "The files this edition was made of were erased {how} The figures stay; their digests "
+            "are on record, but the edition can no longer be made anew."
+        ),
+        how=when_and_why if when_and_why.endswith((".", "!", "?")) else f"{when_and_why}.",
+    )
+
+
 def editions(collection: str, count: int, standing_: int | None) -> Sentence:
     """How many there are and which one stands."""
     if not count:

@@ -1,8 +1,10 @@
 """What is said of files handed in, before they are an edition."""
 
+import datetime as dt
 from collections.abc import Sequence
 
 from server.sentences import names
+from server.sentences.dates import day
 from server.sentences.numbers import whole
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _, n_
@@ -214,3 +216,8 @@ def stale(checked: int, standing: int) -> Sentence:
         then=_("edition {number}", number=checked) if checked else _("no edition"),
         now=_("edition {number}", number=standing) if standing else _("no edition"),
     )
+
+
+def erased(when: dt.datetime, who: str, why: str) -> str:
+    """That the bytes of a file are no longer kept."""
+    return _("on {day} by {who}: {why}", day=day(when), who=who, why=why)

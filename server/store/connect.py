@@ -63,6 +63,29 @@ def transaction(session: Session) -> Iterator[None]:
     session.commit()
 
 
+def scrub(session: Session) -> bool:
+    """See that what was deleted or emptied is no longer in the database's own files, outside a
+    transaction; whether it is so. On SQLite what is freed is overwritten as it is freed
+    (`secure_delete`), and the log of writes is taken over and emptied, which a reader at work may
+    hold up. On PostgreSQL the table of files is written anew. Backups, archived logs and what a
+    disk keeps of overwritten places are out of reach."""
+    session.rollback()
+    engine = session.get_bind()
+    assert isinstance(engine, Engine)
+    if engine.dialect.name != "sqlite":
+        with engine.connect().execution_options(isolation_level="AUTOCOMMIT") as connection:
+            connection.exec_driver_sql("VACUUM FULL upload_file")
+        return True
+    bare = (
+        engine.raw_connection()
+    )  # SQLAlchemy would begin a transaction, in which none can be done
+    try:
+        held_up, *_ = bare.cursor().execute("PRAGMA wal_checkpoint(TRUNCATE)").fetchone()
+    finally:
+        bare.close()
+    return not held_up
+
+
 def _prepare_sqlite(engine: Engine, *, foreign_keys: bool) -> None:
     @event.listens_for(engine, "connect")
     def on_connect(connection: sqlite3.Connection, _record: object) -> None:
@@ -72,6 +95,7 @@ def _prepare_sqlite(engine: Engine, *, foreign_keys: bool) -> None:
             "synchronous=FULL",  # NORMAL may lose the last commit when the power goes
             "busy_timeout=30000",
             "journal_size_limit=67108864",
+            "secure_delete=ON",  # what is deleted, or erased on demand, is overwritten
             f"foreign_keys={'ON' if foreign_keys else 'OFF'}",
         ):
             connection.execute(f"PRAGMA {pragma}")

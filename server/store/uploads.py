@@ -135,6 +135,42 @@ def erase(session: Session, upload_id: int) -> None:
     session.execute(delete(UploadRow).where(UploadRow.id == upload_id))
 
 
+def empty(session: Session, upload_id: int, *, by: str, why: str, at: dt.datetime) -> None:
+    """Erase the bytes of all files of an upload; their names, sizes, digests and mappings stay, and
+    so does the report. Raises: Missing."""
+    upload = lock(session, upload_id)
+    session.execute(
+        update(FileRow)
+        .where(FileRow.upload_id == upload_id, FileRow.erased.is_(None))
+        .values(content=b"", erased=at, erased_by=by, erased_why=why)
+    )
+    collections.touch(session, collections.find(session, upload.collection).id)
+
+
+def erasures(session: Session, collection: str) -> dict[int, tuple[UploadFile, ...]]:
+    """The files whose bytes were erased, by the edition that was made of them. One statement."""
+    rows = session.execute(
+        select(
+            Edition.number,
+            FileRow.role,
+            FileRow.name,
+            FileRow.size,
+            FileRow.sha256,
+            FileRow.mapping,
+            FileRow.erased,
+            FileRow.erased_by,
+            FileRow.erased_why,
+        )
+        .join(FileRow, FileRow.upload_id == Edition.upload_id)
+        .where(Edition.collection_id == collections.id_of(collection), FileRow.erased.is_not(None))
+        .order_by(Edition.number, FileRow.role)
+    ).all()
+    found: dict[int, tuple[UploadFile, ...]] = {}
+    for row in rows:
+        found[row.number] = (*found.get(row.number, ()), UploadFile(*row[1:]))
+    return found
+
+
 def _draft(session: Session, upload_id: int) -> Upload:
     upload = lock(session, upload_id)
     if upload.edition is not None:
