@@ -22,7 +22,7 @@ from server.pages import error as error_page
 from server.pages.page import Page
 from server.pages.printed import printed
 from server.pages.twins import twin
-from server.results.loading import NotInEdition
+from server.results.holdings import NotInEdition
 from server.results.questions import BadAddress
 from server.results.series import TooLarge
 from server.routes import ROUTERS

@@ -12,7 +12,7 @@ from server.config import Config
 from server.exports.table import Column, Row, Table
 from server.exports.twin import Twin
 from server.pages import cells, frames
-from server.results.loading import Holdings, holdings
+from server.results.holdings import Holdings, holdings
 from server.results.questions import DEFAULT_SETTINGS, TrendQuestion, address
 from server.results.series import Series, series
 from server.routes.asking import newest

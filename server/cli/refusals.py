@@ -1,7 +1,7 @@
 """What a command refuses in a sentence, without a traceback."""
 
 from server.accounts.viewer import NotAllowed
-from server.results.loading import NotInEdition
+from server.results.holdings import NotInEdition
 from server.results.questions import BadAddress
 from server.results.series import TooLarge
 from server.routes.asking import NoSuchPage

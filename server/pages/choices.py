@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from engine import settings as named
 from engine.indicators import GROUPS, find
 from engine.settings import SETTINGS, span
-from server.results.loading import Holdings
+from server.results.holdings import Holdings
 from server.results.questions import PopulationYear, PopulationYearQuestion
 from server.sentences import names
 from server.sentences.text import _

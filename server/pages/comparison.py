@@ -23,6 +23,7 @@ from server.results.questions import (
     address,
 )
 from server.sentences import basis, kinds, names
+from server.sentences import breaks as of_breaks
 from server.sentences import comparison as say
 from server.sentences import contributions as ages_say
 from server.sentences.pieces import Piece, Sentence, phrase
@@ -213,6 +214,14 @@ def _cautions(found: Comparison) -> tuple[Caution, ...]:
     return frames.cautions(
         beside=[
             basis.provisional(sorted(provisional)),
+            of_breaks.lies_between(
+                found.holdings.parted(*_outer(found), found.this.of.area, found.that.of.area),
+                *sorted((both.that.period, both.this.period)),
+            ),
+            *(
+                of_breaks.mixed(found.mixed(side), tables.named(found, side.of).whole)
+                for side in sides
+            ),
             basis.few_person_years(
                 fewest, found.settings, tables.named(found, lived[fewest]).whole
             ),
@@ -247,6 +256,12 @@ def _cautions(found: Comparison) -> tuple[Caution, ...]:
             *basis.reading(found.settings),
         ],
     )
+
+
+def _outer(found: Comparison) -> tuple[str, str]:
+    """The years compared, the earlier first; of years added up, the named ones."""
+    first, last = sorted((found.this.of.period, found.that.of.period))
+    return first, last
 
 
 def _whole(found: Comparison, of: PopulationYear) -> str:

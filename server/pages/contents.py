@@ -6,7 +6,7 @@ from typing import ClassVar
 from server.pages import contents_tables, frames
 from server.pages.page import Frame, Notice, Page
 from server.results.contents import Contents, ContentsQuestion, contents
-from server.results.loading import Holdings
+from server.results.holdings import Holdings
 from server.results.questions import (
     DEFAULT_INDICATOR,
     ComparisonQuestion,

@@ -26,7 +26,7 @@ from server.results.questions import (
     TrendQuestion,
     address,
 )
-from server.sentences import basis, names
+from server.sentences import basis, breaks, names
 from server.sentences import curves as curves_say
 from server.sentences import models as models_say
 from server.sentences import population_year as say
@@ -182,6 +182,10 @@ def _cautions(found: Findings) -> tuple[Caution, ...]:
     return frames.cautions(
         beside=[
             basis.provisional(provisional),
+            breaks.mixed(
+                found.holdings.mixed(found.of, found.settings.years),
+                names.population(found.of.sex, found.name),
+            ),
             basis.few_person_years(float(panel.exposure.sum()), found.settings),
             basis.few_deaths(float(panel.deaths.sum()), names.population(found.of.sex, found.name))
             if few_deaths(INDICATORS["asr_esp2013"], panel.deaths)

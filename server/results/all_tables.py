@@ -11,7 +11,8 @@ from engine.ages import AgeGrid
 from engine.estimates import Reason
 from engine.panel import Panel
 from engine.tables import LifeTable
-from server.results.loading import Beside, Found, holdings, load
+from server.results.holdings import holdings
+from server.results.loading import Beside, Found, load
 from server.results.questions import PopulationYear
 from server.store.connect import Session
 

@@ -9,13 +9,13 @@ from urllib.parse import urlencode
 import numpy as np
 
 from server.results.headlines import Headline, headlines
+from server.results.holdings import NotInEdition
 from server.results.keys import (
     DEFAULT_SETTINGS,
     BadValue,
     Items,
     Keys,
 )
-from server.results.loading import NotInEdition
 from server.sentences.text import _
 from server.store import areas, breaks, changes, editions
 from server.store.connect import Session

@@ -16,21 +16,13 @@ from engine.settings import Settings
 from engine.tables import LifeTable
 from server.results.estimating import COMPARED, differences, estimates, stream
 from server.results.explaining import Explained, Sides, explain
-from server.results.loading import (
-    Beside,
-    Found,
-    Holdings,
-    Loaded,
-    Shared,
-    holdings,
-    load,
-    overlap,
-    shared_part,
-)
+from server.results.holdings import Holdings, holdings
+from server.results.loading import Beside, Found, Loaded, Shared, load, overlap, shared_part
 from server.results.questions import ComparisonQuestion, PopulationYear
 from server.results.revision import Moved, moved
 from server.store.connect import Session
 from server.store.heading import Heading
+from server.store.records import Break
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,6 +61,10 @@ class Comparison:
     def same(self) -> bool:
         """The same population-year on both sides: nothing can differ."""
         return self.question.this == self.question.that
+
+    def mixed(self, side: Side) -> tuple[Break, ...]:
+        """The breaks on both sides of which the years added up for a side lie."""
+        return self.holdings.mixed(side.of, self.settings.years)
 
     @property
     def regrouped(self) -> tuple[PopulationYear, ...]:
@@ -151,8 +147,8 @@ def _shared_grid(loaded: Found, asked: Iterable[PopulationYear | Shared]) -> Age
 def _years_between(
     question: ComparisonQuestion, held: Holdings, settings: Settings
 ) -> tuple[PopulationYear, ...]:
-    """All years from that to this, where there are some between two years of one area and sex and
-    the edition holds them; not of years added up, which overlap."""
+    """All years from that to this, where there are some between two years of one area and sex, the
+    edition holds them and no break parts them; not of years added up, which overlap."""
     this, that = question.this, question.that
     step = 1 if this.period > that.period else -1
     years = [
@@ -161,7 +157,8 @@ def _years_between(
     ]
     one_people = (this.area, this.sex) == (that.area, that.sex)
     whole = one_people and settings.years == 1 and all(year in held.status for year in years)
-    return tuple(years) if whole and len(years) > 2 else ()
+    parted = held.parted(this.period, that.period, this.area)
+    return tuple(years) if whole and len(years) > 2 and not parted else ()
 
 
 def _between(loaded: Found, years: Sequence[PopulationYear], grid: AgeGrid) -> Panel | None:

@@ -4,7 +4,7 @@ from dataclasses import dataclass
 from typing import ClassVar, Self
 from urllib.parse import urlencode
 
-from server.results.loading import Holdings, holdings
+from server.results.holdings import Holdings, holdings
 from server.results.questions import DEFAULT_SETTINGS, Items, Keys, TrendQuestion
 from server.results.series import Series, series
 from server.store.connect import Session

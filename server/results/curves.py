@@ -14,8 +14,9 @@ from engine.panel import Panel
 from engine.settings import Settings, span
 from engine.smooth_bands import averaged
 from engine.stages.smoothing import LEAST_GROUPS, adult_counts, adult_groups
+from server.results.holdings import Holdings, holdings
 from server.results.laws import Fitted, Limited, best, fitted, fitted_one, limited
-from server.results.loading import Beside, Found, Holdings, Loaded, holdings, load
+from server.results.loading import Beside, Found, Loaded, load
 from server.results.questions import CurvesQuestion, PopulationYear
 from server.results.revision import Moved, moved
 from server.sentences import names

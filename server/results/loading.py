@@ -11,21 +11,12 @@ from engine.ages import AgeGrid
 from engine.indicators import Indicator
 from engine.panel import Panel
 from engine.settings import Settings, span
-from server.results.breaks import between, parting
 from server.results.questions import PopulationYear
 from server.results.releasing import released
-from server.sentences.names import listed
-from server.sentences.text import _
-from server.store import areas, breaks, schedules
 from server.store.connect import Session
-from server.store.records import MEASURES, Area, Break, Key, Selection, Vector
+from server.store.records import MEASURES, Area, Key, Selection, Vector
 
 Cells = dict[Key, Vector]
-
-
-class NotInEdition(LookupError):
-    """A population-year, area or year the edition does not hold (404); its text lists what it
-    holds."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,99 +37,6 @@ class Loaded:
                 for start, end in zip(grid.starts, ends, strict=True)
             ]
         )
-
-
-@dataclass(frozen=True, slots=True)
-class Holdings:
-    """What an edition holds at all: areas in tree order, sexes, sorted periods, status of each."""
-
-    areas: tuple[Area, ...]
-    sexes: tuple[str, ...]
-    periods: tuple[str, ...]
-    status: dict[PopulationYear, str]
-    breaks: tuple[Break, ...] = ()
-
-    def name(self, area: str) -> str:
-        """The area's name; its code where it has none."""
-        return next((one.name for one in self.areas if one.code == area), "") or area
-
-    def require_area(self, code: str) -> None:
-        """NotInEdition where the edition has no such area."""
-        codes = [area.code for area in self.areas]
-        if code not in codes:
-            raise NotInEdition(
-                _(
-                    "This edition has no area {code}. Its areas are {areas}. Choose among these.",
-                    code=code,
-                    areas=listed(codes, most=12),
-                )
-            )
-
-    def require(self, wanted: PopulationYear) -> None:
-        """NotInEdition where the edition does not hold it."""
-        if wanted not in self.status:
-            raise self.lacks(wanted)
-
-    def all_of(self, wanted: PopulationYear, years: int) -> bool:
-        """Whether the edition holds it and the years before it that are pooled with it."""
-        if wanted not in self.status or int(wanted.period) < years:
-            return False
-        pooled = span(wanted.period, years)
-        return all(replace(wanted, period=period) in self.status for period in pooled)
-
-    def lacks(self, wanted: PopulationYear, years: int = 1) -> NotInEdition:
-        """What is said of a population-year without counts, with one measure alone, or without one
-        of the years that are pooled with it."""
-        periods = self.periods
-        if wanted in self.status and years > 1:
-            return NotInEdition(
-                _(
-                    "These settings add up {years} years, and this edition does not hold all of"
-                    " them up to {code}. Its years are {first} to {last}. Choose a later year, or"
-                    " settings of single years.",
-                    years=years,
-                    code=wanted.code,
-                    first=periods[0],
-                    last=periods[-1],
-                )
-            )
-        return NotInEdition(
-            _(
-                "This edition does not hold {code}, or not both its deaths and its person-years."
-                " Its areas are {areas}; its sexes {sexes}; its years {first} to {last}. Choose"
-                " among these.",
-                code=wanted.code,
-                areas=listed([area.code for area in self.areas], most=12),
-                sexes=listed(self.sexes),
-                first=periods[0] if periods else _("none"),
-                last=periods[-1] if periods else _("none"),
-            )
-        )
-
-    def previous(self, wanted: PopulationYear, years: int = 1) -> PopulationYear | None:
-        """The same area and sex a year before, or as many as are pooled, where the edition holds
-        it and no break lies between."""
-        before = replace(wanted, period=f"{int(wanted.period) - years:04}")
-        if not self.all_of(before, years):
-            return None
-        first = span(before.period, years)[0]
-        return None if self.parted(first, wanted.period, wanted.area) else before
-
-    def parted(self, first: str, last: str, *areas: str) -> tuple[Break, ...]:
-        """The breaks of these areas that lie between two years."""
-        return between(parting(self.breaks, *areas), first, last)
-
-
-def holdings(session: Session, collection: str, number: int) -> Holdings:
-    """Three statements."""
-    contents = schedules.contents(session, collection, number)
-    return Holdings(
-        areas.listing(session, collection, number),
-        contents.sexes,
-        contents.periods,
-        {PopulationYear(*key): status for key, status in contents.status.items()},
-        breaks.listing(session, collection, number),
-    )
 
 
 @dataclass(frozen=True, slots=True)

@@ -12,7 +12,8 @@ from engine.estimates import Estimate, Reason
 from engine.settings import Settings, span
 from server.results import models
 from server.results.estimating import COMPARED, EVERY, differences, estimates, stream
-from server.results.loading import Beside, Found, Holdings, Loaded, holdings, load
+from server.results.holdings import Holdings, holdings
+from server.results.loading import Beside, Found, Loaded, load
 from server.results.questions import PopulationYear, PopulationYearQuestion
 from server.results.revision import Moved, moved
 from server.sentences import names

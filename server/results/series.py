@@ -17,15 +17,8 @@ from engine.standardisation import few_deaths
 from server.results import courses
 from server.results.breaks import between, crossed, parting, shocks
 from server.results.courses import Course, newest, runs
-from server.results.loading import (
-    Beside,
-    Found,
-    Holdings,
-    Loaded,
-    NotInEdition,
-    holdings,
-    load,
-)
+from server.results.holdings import Holdings, NotInEdition, holdings
+from server.results.loading import Beside, Found, Loaded, load
 from server.results.questions import PopulationYear, TrendQuestion
 from server.results.revision import Moved, moved
 from server.sentences.numbers import whole

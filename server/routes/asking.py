@@ -8,7 +8,7 @@ from fastapi import APIRouter, Depends, Request, Response
 
 from server.accounts.viewer import LOCAL, Right, Viewer
 from server.pages.page import Page
-from server.results.loading import NotInEdition
+from server.results.holdings import NotInEdition
 from server.results.questions import CODE, BadValue, Question, address
 from server.sentences.text import _
 from server.store import collections, editions

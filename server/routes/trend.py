@@ -1,7 +1,7 @@
 """Which way is it going? /c/{collection}/{edition}/trend and its twins."""
 
 from server.pages import trend
-from server.results.loading import NotInEdition, holdings
+from server.results.holdings import NotInEdition, holdings
 from server.results.questions import TrendQuestion
 from server.routes.asking import pinned
 from server.sentences.text import _

@@ -18,7 +18,7 @@ from engine.settings import find as named
 from server.exports.table import Gap, Row
 from server.pages.population_year import PopulationYearPage, build
 from server.results.estimating import USUAL
-from server.results.loading import NotInEdition
+from server.results.holdings import NotInEdition
 from server.results.questions import PopulationYear, PopulationYearQuestion
 from server.sentences.pieces import Sentence, plain
 from server.store.connect import make_engine, sessions

@@ -9,7 +9,7 @@ import pytest
 
 from server.exports.table import Gap, Table
 from server.pages.trend import TrendPage, build
-from server.results.loading import NotInEdition
+from server.results.holdings import NotInEdition
 from server.results.questions import TrendQuestion
 from server.results.series import TooLarge
 from server.sentences.numbers import number

@@ -15,7 +15,8 @@ from engine.panel import Panel
 from engine.settings import find
 from server.results.comparison import Comparison, comparison
 from server.results.estimating import stream
-from server.results.loading import NotInEdition, Shared
+from server.results.holdings import NotInEdition
+from server.results.loading import Shared
 from server.results.questions import ComparisonQuestion, PopulationYear
 from server.store.connect import Session
 from server.store.heading import heading

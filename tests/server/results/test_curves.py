@@ -12,8 +12,8 @@ from engine.graduation import PENALTIES
 from engine.panel import Panel
 from engine.settings import find as named
 from server.results import curves
+from server.results.holdings import NotInEdition
 from server.results.laws import Fitted, best, fitted, rivals
-from server.results.loading import NotInEdition
 from server.results.questions import CurvesQuestion, PopulationYear
 from server.store.connect import Session
 from server.store.heading import heading

@@ -10,15 +10,8 @@ from numpy.testing import assert_array_equal
 
 from engine.ages import AgeGrid
 from engine.panel import Panel
-from server.results.loading import (
-    Beside,
-    NotInEdition,
-    Shared,
-    holdings,
-    load,
-    overlap,
-    shared_part,
-)
+from server.results.holdings import NotInEdition, holdings
+from server.results.loading import Beside, Shared, load, overlap, shared_part
 from server.results.questions import PopulationYear
 from server.store.connect import Session
 from server.store.records import Area

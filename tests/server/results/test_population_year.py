@@ -14,7 +14,7 @@ from engine.chain import run
 from engine.estimates import Reason
 from engine.settings import find
 from server.results.estimating import EVERY, USUAL, stream
-from server.results.loading import NotInEdition
+from server.results.holdings import NotInEdition
 from server.results.population_year import Findings, population_year
 from server.results.questions import PopulationYear, PopulationYearQuestion
 from server.store.connect import Session

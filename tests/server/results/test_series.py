@@ -13,7 +13,8 @@ from engine.estimates import Reason
 from engine.settings import find
 from server.results import series as module
 from server.results.estimating import stream
-from server.results.loading import NotInEdition, load
+from server.results.holdings import NotInEdition
+from server.results.loading import load
 from server.results.questions import PopulationYear, TrendQuestion
 from server.results.series import Series, TooLarge, series
 from server.store.connect import Session
