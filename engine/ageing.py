@@ -82,7 +82,8 @@ def rises(panel: Panel, least_deaths: float = 100, width: int = 5, level: float 
 
     Groups are first summed to the starts that are multiples of `width`; pairs of that width only.
     Given the deaths of both groups together, those above are binomial, so the exact limits of that
-    share (Clopper & Pearson) give exact limits of the ratio of rates, and of k.
+    share (Clopper & Pearson) give exact limits of the ratio of rates, and of k. Of deaths that were
+    shared out, those counted are binomial, and the ratio is scaled by what they are worth.
 
     Shape:   panel [..., age] -> `at` [k], the others [..., k].
     Missing: nan where either group has fewer than `least_deaths` deaths, or no person-years.
@@ -93,9 +94,11 @@ def rises(panel: Panel, least_deaths: float = 100, width: int = 5, level: float 
     grid = AgeGrid(tuple(start for start in panel.grid.starts if start % width == 0))
     panel = panel.regroup(grid)
     pairs = np.flatnonzero((grid.widths[:-1] == width) & (grid.widths[1:] == width))
-    below, above = panel.deaths[..., pairs], panel.deaths[..., pairs + 1]
+    below, above = panel.counts[..., pairs], panel.counts[..., pairs + 1]
     with np.errstate(all="ignore"):
         odds = panel.exposure[..., pairs] / panel.exposure[..., pairs + 1]
+        if (worth := panel.worth) is not None:
+            odds = odds * worth[..., pairs + 1] / worth[..., pairs]
         enough = (below >= least_deaths) & (above >= least_deaths) & np.isfinite(odds) & (odds > 0)
         tail = (1 - level) / 2
         low = betaincinv(above, below + 1, tail)

@@ -1,6 +1,6 @@
 """What moves a smooth number: chance in every count behind it, and the limits that leaves."""
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -11,6 +11,7 @@ from engine.ages import AgeGrid, Array
 from engine.chain import Chain, Tally, run
 from engine.count_limits import Interval, gamma_limits
 from engine.indicator import Indicator, Limits
+from engine.panel import Panel
 from engine.settings import Settings
 from engine.tables import Partials
 
@@ -19,7 +20,11 @@ STACKED = 2**18  # derivatives by one column that are pulled back at once
 
 @dataclass(frozen=True, slots=True)
 class Chance:
-    """One count more moves the number by its weight; the counts are Poisson."""
+    """One count more moves the number by its weight; the counts are Poisson.
+
+    Where deaths were shared out among those counted, D = k C, the counts are C and a weight is k
+    times that of a death: the variance is that of the original counts.
+    """
 
     weights: Array  # [..., count]
     counts: Array  # [..., count]
@@ -27,7 +32,7 @@ class Chance:
 
     @property
     def variance(self) -> Array:
-        """Of the number by chance in counts, sum w^2 D: [...]."""
+        """Of the number by chance in counts, sum w^2 C: [...]."""
         return np.asarray((self.weights**2 * self.counts).sum(axis=-1))
 
     @property
@@ -69,25 +74,58 @@ def _counts_behind(indicators: Sequence[Indicator], chain: Chain) -> dict[str, t
     if by_rate:
         pulled.append(chain.rates.pull(np.stack(list(by_rate.values()))))
     if pulled:
-        weights = chain.rates.per_death(np.concatenate(pulled))
+        weights = per_count(chain.panel, chain.rates.per_death(np.concatenate(pulled)))
+        counts = chain.panel.counts
         for key, own in zip((*by_column, *by_rate), weights, strict=True):
-            found[key] = (own, chain.panel.deaths)
+            found[key] = (own, counts)
     return found
 
 
+def per_count(panel: Panel, per_death: Array) -> Array:
+    """What one death counted moves, from what one death does: each stands for those that were
+    shared out by it, [..., age]."""
+    worth = panel.worth
+    return per_death if worth is None else per_death * worth
+
+
 def _astray(indicators: Sequence[Indicator], chain: Chain) -> dict[str, Array]:
-    """Standard deviation of each number that is owed to persons counted wrongly: half of what it
-    moves by from one standard deviation too few to one too many, at all ages alike."""
-    panel, settings = chain.panel, chain.settings
-    error = miscount(panel.grid, settings)
+    """Standard deviation of each number that is owed to persons counted wrongly."""
+    if not indicators:
+        return {}
+
+    def values(panel: Panel) -> Array:
+        moved = run(panel, chain.settings)
+        with np.errstate(all="ignore"):
+            return np.stack([one.value(moved) for one in indicators])
+
+    shape = (len(indicators), *chain.panel.batch_shape)
+    out = np.broadcast_to(astray(values, chain.panel, settings=chain.settings), shape)
+    return {one.key: out[place] for place, one in enumerate(indicators)}
+
+
+def astray(values: Callable[..., Array], *panels: Panel, settings: Settings) -> Array:
+    """Standard deviation of numbers that is owed to persons counted wrongly, in each population for
+    itself: half of what they move by from one standard deviation too few to one too many, at all
+    ages alike.
+
+    Shape: as `values` of the panels; 0 where the settings name no error of the population.
+    """
+    error = miscount(panels[0].grid, settings)
     if not error.any():
-        return {one.key: np.zeros(panel.batch_shape) for one in indicators}
-    fewer, more = (
-        run(replace(panel, exposure=panel.exposure * side), settings)
-        for side in (1 - error, 1 + error)
-    )
-    with np.errstate(all="ignore"):
-        return {one.key: np.abs(one.value(fewer) - one.value(more)) / 2 for one in indicators}
+        return np.zeros(())
+    moved: Array = np.zeros(())
+    for place, panel in enumerate(panels):
+        fewer, more = (
+            values(
+                *panels[:place],
+                replace(panel, exposure=panel.exposure * side),
+                *panels[place + 1 :],
+            )
+            for side in (1 - error, 1 + error)
+        )
+        with np.errstate(all="ignore"):
+            moved = np.hypot(moved, fewer - more)
+    return moved / 2
 
 
 def miscount(grid: AgeGrid, settings: Settings) -> Array:

@@ -10,6 +10,7 @@ from scipy.special import ndtri
 from engine.ageing import within
 from engine.ages import AgeGrid, Array
 from engine.chain import run
+from engine.chance import per_count
 from engine.estimates import Estimate, Reason
 from engine.indicator import Indicator
 from engine.laws import GOMPERTZ, Fit, fit
@@ -79,9 +80,10 @@ def implied_population(
     with np.errstate(all="ignore"):
         own, parent = _Side.of(panel, age), _Side.of(whole, age)
         log = np.log(own.ratio) - np.log(parent.ratio)
-        both = panel.deaths if shared is None else shared.deaths
-        variance = own.weights**2 * panel.deaths + parent.weights**2 * whole.deaths
-        variance = variance - 2 * own.weights * parent.weights * both
+        both = panel.counts if shared is None else shared.counts
+        by_own, by_parent = per_count(panel, own.weights), per_count(whole, parent.weights)
+        variance = by_own**2 * panel.counts + by_parent**2 * whole.counts
+        variance = variance - 2 * by_own * by_parent * both
         se = np.sqrt(np.maximum(variance.sum(axis=-1), 0.0))
         half = float(ndtri((1 + settings.level) / 2)) * np.where(se > 0, se, np.nan)
         value = np.exp(log)

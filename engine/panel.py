@@ -26,6 +26,10 @@ class Panel:
     `whole` is the population of which this one is a part, in the same years and sex: the one to
     borrow a rate from and to be set against. `standard` is one whose people weight the ages. Both
     are panels of the same batch and grid, nan where a population has none.
+
+    `counted` are the deaths as they were counted, where `deaths` hold others that were shared out
+    among them (of unknown age, say): chance is in the deaths counted, each of which stands for
+    `worth` deaths.
     """
 
     grid: AgeGrid
@@ -36,9 +40,13 @@ class Panel:
     births: Array  # [..., 3], as in BIRTHS; nan where not handed in
     whole: "Panel | None" = None
     standard: "Panel | None" = None
+    counted: Array | None = None  # [..., age]; None: all deaths
 
     def __post_init__(self) -> None:
-        for name in ("deaths", "exposure"):
+        named = (
+            ("deaths", "exposure") if self.counted is None else ("deaths", "exposure", "counted")
+        )
+        for name in named:
             ages = getattr(self, name).shape[-1]
             if ages != len(self.grid):
                 raise ValueError(
@@ -55,7 +63,28 @@ class Panel:
     def over(self, change: Callable[[Array], Array]) -> "Panel":
         """Every array changed alike, where the change is one of the leading axes only."""
         arrays: dict[str, Any] = {name: change(getattr(self, name)) for name in COUNTED}
+        if self.counted is not None:
+            arrays["counted"] = change(self.counted)
         return replace(self, **arrays, **self._beside(lambda other: other.over(change)))
+
+    @property
+    def counts(self) -> Array:
+        """Deaths in which chance is, [..., age]: those counted. A group to which deaths were shared
+        out though none was counted in it has these themselves."""
+        if self.counted is None:
+            return self.deaths
+        return np.where((self.counted > 0) | np.isnan(self.deaths), self.counted, self.deaths)
+
+    @property
+    def worth(self) -> Array | None:
+        """Deaths that each one counted stands for, [..., age]; None: one. Where none was, as many
+        as in all ages together."""
+        if self.counted is None:
+            return None
+        with np.errstate(divide="ignore", invalid="ignore"):
+            together = self.deaths.sum(axis=-1) / self.counts.sum(axis=-1)
+            usual = np.where(np.isfinite(together), together, 1.0)[..., None]
+            return np.where(self.counts > 0, self.deaths / self.counts, usual)
 
     def __getitem__(self, where: Any) -> "Panel":
         """Part of the batch; `where` indexes the leading axes only."""
@@ -68,6 +97,7 @@ class Panel:
             grid=to,
             deaths=self.grid.regroup(self.deaths, to),
             exposure=self.grid.regroup(self.exposure, to),
+            counted=None if self.counted is None else self.grid.regroup(self.counted, to),
             **self._beside(lambda other: other.regroup(to)),
         )
 
@@ -108,7 +138,9 @@ class Panel:
             weight = np.where(total > 0, infant / total, 0.5)
             ratio = (infant / years) / (total / years.sum(axis=-1, keepdims=True))
         ratio = np.where(np.isfinite(ratio), ratio, 1.0)
-        return cls(grid, deaths, exposure, weight, ratio, women.births + men.births)
+        births = women.births + men.births
+        counted = _counted([women, men], lambda parts: parts[0] + parts[1])
+        return cls(grid, deaths, exposure, weight, ratio, births, counted=counted)
 
     @classmethod
     def pooled(cls, panels: "Sequence[Panel]") -> "Panel":
@@ -128,7 +160,8 @@ class Panel:
             name: (weights.get(name, 1.0) * _side_by_side(panels, name)).sum(axis=0)
             for name in COUNTED
         }
-        return cls(grid, **arrays, **_every(cls.pooled, panels))
+        counted = _counted(panels, lambda parts: np.stack(parts).sum(axis=0))
+        return cls(grid, **arrays, **_every(cls.pooled, panels), counted=counted)
 
     @classmethod
     def stack(cls, panels: "Sequence[Panel]") -> "Panel":
@@ -136,7 +169,8 @@ class Panel:
         if len({panel.grid for panel in panels}) != 1:
             raise ValueError("panels on different age grids cannot be stacked; regroup them first")
         arrays: dict[str, Any] = {name: _side_by_side(panels, name) for name in COUNTED}
-        return cls(panels[0].grid, **arrays, **_every(cls.stack, panels))
+        counted = _counted(panels, np.stack)
+        return cls(panels[0].grid, **arrays, **_every(cls.stack, panels), counted=counted)
 
 
 COUNTED = ("deaths", "exposure", "infant_weight", "infant_ratio", "births")
@@ -145,6 +179,13 @@ BESIDE = ("whole", "standard")
 
 def _side_by_side(panels: "Sequence[Panel]", name: str) -> Array:
     return np.stack([getattr(panel, name) for panel in panels])
+
+
+def _counted(panels: "Sequence[Panel]", join: Callable[[list[Array]], Array]) -> Array | None:
+    """Deaths as counted, joined; None where all are in every panel."""
+    if all(panel.counted is None for panel in panels):
+        return None
+    return join([one.deaths if one.counted is None else one.counted for one in panels])
 
 
 def _every(join: "Callable[[Sequence[Panel]], Panel]", panels: "Sequence[Panel]") -> dict[str, Any]:

@@ -1,6 +1,6 @@
 """Shift, squeeze and early deaths: a difference in life expectancy told by a fitted law."""
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.polynomial.legendre import leggauss
@@ -9,7 +9,7 @@ from scipy.special import ndtri
 
 from engine.ages import Array
 from engine.chain import Chain, run
-from engine.chance import miscount
+from engine.chance import astray, per_count
 from engine.estimates import Estimate, Reason
 from engine.hazards import MAKEHAM_INFANT, Law
 from engine.indicator import Needs
@@ -84,11 +84,17 @@ def shift_squeeze(
     chains = run(this, settings), run(that, settings)
     sides = _fitted(this, law), _fitted(that, law)
     misfits = _misfit(chains[0], sides[0]), _misfit(chains[1], sides[1])
+
+    def anew(upper: Panel, lower: Panel) -> Array:
+        fits = _fitted(upper, law), _fitted(lower, law)
+        return _values((run(upper, settings), run(lower, settings)), fits)
+
     with np.errstate(all="ignore"):
         values = _values(chains, sides)
         moved = _moved(chains[0], sides, 0), _moved(chains[1], sides, 1)
         by_chance = np.sqrt(_variance(moved, this, that, shared))
-        se = np.where(by_chance > 0, np.hypot(by_chance, _astray(this, that, settings, law)), 0.0)
+        out = astray(anew, this, that, settings=settings)
+        se = np.where(by_chance > 0, np.hypot(by_chance, out), 0.0)
     reason = _reasons(*chains, misfits)
     named = {
         name: _estimate(value, reason, error, settings.level)
@@ -104,27 +110,6 @@ def _values(chains: tuple[Chain, Chain], sides: tuple[Fit, Fit]) -> Array:
     parts = _parts(this.law, this.parameters, that.parameters, this.centre)
     table = chains[0].table.ex[..., 0] - chains[1].table.ex[..., 0]
     return np.concatenate([parts, (table - parts.sum(axis=0))[None]])
-
-
-def _astray(this: Panel, that: Panel, settings: Settings, law: Law) -> Array:
-    """Standard deviation of each value that is owed to persons counted wrongly, on each side for
-    itself: half of what it moves by from one standard deviation too few to one too many."""
-    error = miscount(this.grid, settings)
-    if not error.any():
-        return np.zeros(())
-
-    def values(ours: Array, theirs: Array) -> Array:
-        counted = (
-            replace(this, exposure=this.exposure * (1 + ours)),
-            replace(that, exposure=that.exposure * (1 + theirs)),
-        )
-        upper, lower = (run(panel, settings) for panel in counted)
-        return _values((upper, lower), (_fitted(counted[0], law), _fitted(counted[1], law)))
-
-    none = np.zeros_like(error)
-    by_this = values(-error, none) - values(error, none)
-    by_that = values(none, -error) - values(none, error)
-    return np.asarray(np.hypot(by_this, by_that) / 2)
 
 
 def _fitted(panel: Panel, law: Law) -> Fit:
@@ -206,14 +191,15 @@ def _by_parameters(sides: tuple[Fit, Fit], which: int) -> Array:
 
 
 def _variance(moved: tuple[Array, Array], this: Panel, that: Panel, shared: Panel | None) -> Array:
-    """Of each value: deaths are Poisson, those in both count once. [value, ...]"""
+    """Of each value: deaths counted are Poisson, those in both count once. [value, ...]"""
+    moved = per_count(this, moved[0]), per_count(that, moved[1])
     own, other = (
-        (weights**2 * panel.deaths).sum(axis=-1)
+        (weights**2 * panel.counts).sum(axis=-1)
         for weights, panel in zip(moved, (this, that), strict=True)
     )
     if shared is None:
         return np.asarray(own + other)
-    both = (moved[0] * moved[1] * shared.deaths).sum(axis=-1)
+    both = (moved[0] * moved[1] * shared.counts).sum(axis=-1)
     return np.asarray(np.maximum(own + other + 2 * both, 0.0))
 
 

@@ -15,7 +15,7 @@ from engine.estimates import Estimate, Reason
 from engine.indicator import Indicator
 from engine.panel import Panel
 from engine.settings import Settings
-from engine.streams import normal_draws
+from engine.streams import PairDraws, normal_draws, pair_draws, poisson_draws
 
 Draw = Callable[[Sequence[Indicator], slice], dict[str, Array]]  # of some rows: by key, [draw, row]
 
@@ -73,10 +73,36 @@ def drawn(
     batch = deaths.shape[:-1]
     copies = panel.over(lambda array: np.broadcast_to(array, (*batch, array.shape[-1])))
     lived = persons(panel, streams, len(deaths), settings)
-    counts = replace(copies, deaths=deaths, exposure=lived)
+    counts = replace(copies, deaths=deaths, exposure=lived, counted=None)
     with np.errstate(all="ignore"):
         observed, redrawn = run(panel, settings), run(counts, settings)
         return {one.key: one.drawn(observed, redrawn) for one in indicators}
+
+
+def redrawn(panel: Panel, streams: NDArray[np.str_], draws: int, purpose: str) -> Array:
+    """Deaths as chance might have had them: those counted are drawn, and others shared out by them
+    as before. [draw, ..., age]"""
+    return _shared_out(panel, poisson_draws(panel.counts, streams, draws, purpose))
+
+
+def pair_redrawn(
+    this: Panel,
+    that: Panel,
+    shared: Array | None,
+    streams: tuple[NDArray[np.str_], NDArray[np.str_]],
+    draws: int,
+    purpose: str,
+) -> PairDraws:
+    """The same of two populations, `shared` the counts that stand in both (`Panel.counts`)."""
+    in_both = np.zeros_like(this.deaths) if shared is None else shared
+    drawn = pair_draws(this.counts, that.counts, in_both, streams, draws, purpose)
+    return PairDraws(_shared_out(this, drawn.this), _shared_out(that, drawn.that))
+
+
+def _shared_out(panel: Panel, counts: Array) -> Array:
+    """Deaths from those counted, [draw, ..., age]."""
+    worth = panel.worth
+    return counts if worth is None else counts * worth
 
 
 def persons(panel: Panel, streams: NDArray[np.str_], draws: int, settings: Settings) -> Array:

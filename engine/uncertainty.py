@@ -18,8 +18,7 @@ from engine.indicator import Indicator, Limits
 from engine.panel import Panel
 from engine.reasons import against, unless_found
 from engine.settings import Settings
-from engine.simulation import Draw, drawn, flat, simulated
-from engine.streams import pair_draws, poisson_draws
+from engine.simulation import Draw, drawn, flat, pair_redrawn, redrawn, simulated
 
 Codes = NDArray[np.str_]
 
@@ -73,7 +72,7 @@ def estimates(
     rows, names = flat(panel), np.asarray(streams).ravel()
 
     def draw(stepped: Sequence[Indicator], where: slice) -> dict[str, Array]:
-        deaths = poisson_draws(rows.deaths[where], names[where], settings.draws, CHANCE)
+        deaths = redrawn(rows[where], names[where], settings.draws, CHANCE)
         return drawn(stepped, rows[where], deaths, settings, names[where])
 
     return found | simulated(indicators, found, draw, settings)
@@ -184,7 +183,7 @@ def _in_both(one: Indicator, shared: Panel | None, settings: Settings) -> Array:
     if shared is None:
         return np.zeros(1)
     if one.unit.limits != "count":
-        return shared.deaths
+        return shared.counts
     # births that one side did not hand in are taken as that side's own: no interval is too narrow
     return np.nan_to_num(chances([one], run(shared, settings))[one.key].counts)
 
@@ -219,14 +218,14 @@ def _pair_draw(
 ) -> Draw:
     """Differences of the values of simulated tables, deaths in both drawn once."""
     upper, lower = flat(this), flat(that)
-    common = np.zeros_like(upper.deaths) if shared is None else flat(shared).deaths
+    common = None if shared is None else flat(shared).counts
     here, there = (np.asarray(side).ravel() for side in streams)
 
     def draw(stepped: Sequence[Indicator], where: slice) -> dict[str, Array]:
-        deaths = pair_draws(
-            upper.deaths[where],
-            lower.deaths[where],
-            common[where],
+        deaths = pair_redrawn(
+            upper[where],
+            lower[where],
+            None if common is None else common[where],
             (here[where], there[where]),
             settings.draws,
             CHANCE,

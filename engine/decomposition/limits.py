@@ -8,7 +8,7 @@ from numpy.typing import NDArray
 
 from engine.ages import AgeGrid, Array
 from engine.chain import Chain, Reading
-from engine.chance import Chance, limits, miscount
+from engine.chance import Chance, astray, limits, per_count
 from engine.decomposition.bends import bends
 from engine.decomposition.line import cause_steps, cells, contributions, contributions_by_cause
 from engine.decomposition.simulated import Limits, stepwise_limits
@@ -16,8 +16,8 @@ from engine.decomposition.straight import Line
 from engine.indicator import Indicator
 from engine.panel import Panel
 from engine.settings import Settings
-from engine.simulation import persons
-from engine.streams import PairDraws, pair_draws
+from engine.simulation import pair_redrawn, persons
+from engine.streams import PairDraws
 
 ROUNDING = (
     1e-7  # of the widest: what is left of an interval at an age that the number does not read
@@ -42,7 +42,8 @@ def contribution_limits(
     """Limits of the contributions along the straight line, or of the stepwise ones where the
     indicator is not smooth, at the settings' level.
 
-    Deaths of both populations are Poisson, those counted in both (`shared`) move the two together;
+    Deaths of both populations are Poisson, those counted in both (`shared`, `Panel.counts` of whom
+    both hold) move the two together;
     person-years and the infants' mix are taken as known, but for the settings' error of the
     population. Smooth: from what one death more on either side moves a contribution by, as limits
     of the indicator itself are (`engine.chance.limits`). Not smooth: bias-corrected percentiles of
@@ -72,8 +73,7 @@ def contribution_limits(
         raise ValueError(
             f"contributions to {indicator.label} are simulated, and no streams were given"
         )
-    in_both = np.zeros_like(this.deaths) if shared is None else shared
-    drawn = pair_draws(this.deaths, that.deaths, in_both, streams, draws, "contributions")
+    drawn = pair_redrawn(this, that, shared, streams, draws, "contributions")
     lived = PairDraws(
         *(
             persons(panel, np.asarray(code), draws, settings)
@@ -95,18 +95,19 @@ def _smooth_limits(
     """[..., cause, group]; without causes there is one, with the rates that the number rests on."""
     grid, line = this.grid, Line.between(that, this, settings, indicator)
     if causes is None:
-        counts = this.deaths[..., None, :], that.deaths[..., None, :]
+        counts = this.counts[..., None, :], that.counts[..., None, :]
         steps = line.step[..., None, :]
     else:
-        counts, steps = causes, cause_steps(this, that, causes)
+        counts = _as_counted(this, causes[0]), _as_counted(that, causes[1])
+        steps = cause_steps(this, that, causes)
     both = np.zeros_like(counts[0]) if shared is None else shared
     with np.errstate(all="ignore"):
         mean = line.mean_slope(indicator)
         moves = _moves(indicator, line, mean, steps, groups)
         value = grid.regroup(cells(mean, steps, line.difference(indicator)), groups)
         chance = _chance(*moves, *(_first(deaths) for deaths in (*counts, both)))
-        astray = _astray(indicator, this, that, settings, causes, groups)
-        chance = replace(chance, astray=chance.astray + _ahead(astray))
+        out = _astray(indicator, this, that, settings, causes, groups)
+        chance = replace(chance, astray=chance.astray + _ahead(out))
         ends = limits("mixed", _ahead(value), chance, settings.level)
     low, high = (np.moveaxis(end, (0, 1), (-1, -2)) for end in ends)
     widest = np.nanmax(high - low, axis=(-2, -1), keepdims=True, initial=0.0)
@@ -143,9 +144,16 @@ def _moves(
 
 
 def _per_death(by_rate: Array, chain: Chain) -> Array:
-    """[age moved, cause, ..., group] in raw rates -> [group, cause, ..., age moved] in deaths."""
+    """[age moved, cause, ..., group] in raw rates -> [group, cause, ..., age moved] in deaths as
+    counted."""
     turned = np.ascontiguousarray(np.swapaxes(by_rate, 0, -1))
-    return chain.rates.per_death(chain.rates.pull(turned))
+    return per_count(chain.panel, chain.rates.per_death(chain.rates.pull(turned)))
+
+
+def _as_counted(panel: Panel, causes: Array) -> Array:
+    """Deaths of each cause as counted: shared out in each as in all of the age."""
+    worth = panel.worth
+    return causes if worth is None else causes / worth[..., None, :]
 
 
 def _chance(this: _Moves, that: _Moves, ours: Array, theirs: Array, both: Array) -> Chance:
@@ -172,16 +180,9 @@ def _astray(
     causes: Pair | None,
     groups: AgeGrid,
 ) -> Array:
-    """Standard deviation owed to persons counted wrongly, on each side for itself: half of what a
-    contribution moves by from one standard deviation too few to one too many, at all ages alike.
-    [..., cause, group]"""
-    error = miscount(this.grid, settings)
-    if not error.any():
-        return np.zeros((*this.batch_shape, 1, 1))
+    """Standard deviation owed to persons counted wrongly, [..., cause, group]."""
 
-    def value(ours: Array, theirs: Array) -> Array:
-        upper = replace(this, exposure=this.exposure * (1 + ours))
-        lower = replace(that, exposure=that.exposure * (1 + theirs))
+    def values(upper: Panel, lower: Panel) -> Array:
         if causes is None:
             by_cause = contributions(indicator, upper, lower, settings).by_age[..., None, :]
         else:
@@ -189,10 +190,8 @@ def _astray(
             by_cause = found.by_cause
         return this.grid.regroup(by_cause, groups)
 
-    none = np.zeros_like(error)
-    by_this = value(-error, none) - value(error, none)
-    by_that = value(none, -error) - value(none, error)
-    return np.asarray(np.hypot(by_this, by_that) / 2)
+    out = astray(values, this, that, settings=settings)
+    return out if out.ndim else np.zeros((*this.batch_shape, 1, 1))
 
 
 def _first(by_cause: Array) -> Array:

@@ -40,7 +40,7 @@ def stepwise_limits(
     observed, found = run(passed_through(ours, theirs), settings), []
     for some in blocks(len(drawn.this), observed.rates.mx.size // len(this.grid)):
         these = (
-            replace(panel, deaths=deaths[some], exposure=years[some])
+            replace(panel, deaths=deaths[some], exposure=years[some], counted=None)
             for panel, deaths, years in zip((ours, theirs), drawn, lived, strict=True)
         )
         with np.errstate(all="ignore"):

@@ -124,3 +124,38 @@ def test_refusals() -> None:
         Panel.of(GRID, -years, years, sex="f")
     with pytest.raises(ValueError, match="different age grids cannot be stacked"):
         Panel.stack([gompertz_panel(), gompertz_panel(GRIDS["single"])])
+
+
+def test_deaths_as_counted_follow_the_deaths() -> None:
+    women = replace(sex("f", 2, 400), counted=np.array([2.0, 1.5, 6.0]))
+    men = sex("m", 6, 600)
+    for joined in (Panel.persons(women, men), Panel.pooled([women, men])):
+        assert joined.counted is not None
+        np.testing.assert_array_equal(joined.counted, [8, 3.5, 15])
+        np.testing.assert_allclose(joined.counts * joined.worth, joined.deaths)
+    both = Panel.stack([women, men])
+    assert both.counted is not None
+    np.testing.assert_array_equal(both.counted[1], men.deaths)
+    assert both[0].counted is not None
+    np.testing.assert_array_equal(both[0].counted, [2, 1.5, 6])
+    coarser = women.regroup(AgeGrid((0, 5)))
+    assert coarser.counted is not None
+    np.testing.assert_array_equal(coarser.counted, [3.5, 6])
+    assert Panel.persons(men, men).counted is None
+    assert men.worth is None
+
+
+def test_a_counted_death_is_worth_those_shared_out_by_it() -> None:
+    women = replace(sex("f", 2, 400), counted=np.array([2.0, 0.0, 6.0]))
+    np.testing.assert_array_equal(women.counts, [2, 2, 6])  # of none counted, those shared out
+    np.testing.assert_array_equal(women.worth, [1, 1, 1.5])
+    nobody = replace(women, deaths=np.array([2.0, 0.0, 9.0]))
+    np.testing.assert_array_equal(nobody.counts, [2, 0, 6])
+    np.testing.assert_array_equal(nobody.worth, [1, 11 / 8, 1.5])
+
+
+def test_deaths_as_counted_are_refused_as_deaths_are() -> None:
+    with pytest.raises(ValueError, match="counted ends in 2 age groups"):
+        replace(sex("f", 2, 400), counted=np.ones(2))
+    with pytest.raises(ValueError, match="counted has a negative count"):
+        replace(sex("f", 2, 400), counted=-np.ones(3))
