@@ -25,7 +25,7 @@ class Series:
     label: str
     x: tuple[float, ...]
     y: Sequence  # None: a gap, never bridged
-    draw: Literal["line", "needles", "bars", "dots"] = "line"
+    draw: Literal["line", "needles", "bars", "dots", "reaches"] = "line"
     sex: Literal["f", "m", "p"] = "f"  # gives the dash of a line
     role: str = "s1"  # colour token s1 ... s7; this is s1, that is s2
     weight: Literal["this", "that", "one", "many"] = "one"
@@ -88,7 +88,7 @@ class Chart:
     finding: str  # the title: a sentence with its number
     unit: str  # the unit line; the page puts "Figure n." before it
     source: str
-    x_kind: Literal["age", "year"]
+    x_kind: Literal["age", "year", "amount"]  # amount: rows, each reaching from 0 to its x
     x_range: tuple[float, float]
     y_title: str
     y_range: tuple[float, float]
@@ -96,6 +96,7 @@ class Chart:
     series: tuple[Series, ...]
     described: str = ""  # the sentence for those who do not see the picture
     size: Literal["low", "std", "tall"] = "std"
+    x_ticks: tuple[float, ...] = ()  # of amounts
     y_text: tuple[str, ...] = ()  # texts of the ticks
     y_log: bool = False
     hover: str = "%{x}: %{y}"

@@ -7,8 +7,10 @@ from math import ceil, floor, log10
 from typing import Any
 
 from server.charts.chart import Chart
-from server.charts.layout import margins, placed
-from server.charts.template import LAYOUT, NARROW, PRINT, WIDE
+from server.charts.layout import placed
+from server.charts.margins import margins, short_name
+from server.charts.scales import decimals
+from server.charts.template import LAYOUT, NARROW, PRINT, WIDE, Measure
 from server.charts.traces import traces
 
 STEP = {"age": (10, 20), "year": (5, 10)}  # of labelled ticks, wide and narrow
@@ -19,13 +21,15 @@ def figure(chart: Chart, say: Callable[[str], str]) -> dict[str, Any]:
 
     `narrow` and `print` replace whole keys of the layout. `say` is the text catalogue.
     """
-    layout = LAYOUT | {"xaxis": _x_axis(chart, narrow=False), "yaxis": _y_axis(chart)}
+    layout = LAYOUT | {"xaxis": _x_axis(chart, narrow=False), "yaxis": _y_axis(chart, WIDE)}
     font = LAYOUT["font"]
     wide, phone, paper = (
         {"margin": margins(chart, measure)} | placed(chart, measure, say)
         for measure in (WIDE, NARROW, PRINT)
     )
     phone |= {"font": font | {"size": NARROW.text}, "xaxis": _x_axis(chart, narrow=True)}
+    if chart.x_kind == "amount":
+        phone["yaxis"] = _y_axis(chart, NARROW)
     return {
         "data": traces(chart),
         "layout": layout | wide,
@@ -37,19 +41,22 @@ def figure(chart: Chart, say: Callable[[str], str]) -> dict[str, Any]:
 
 def _x_axis(chart: Chart, *, narrow: bool) -> dict[str, Any]:
     low, high = chart.x_range
+    if chart.x_kind == "amount":
+        ticks = {"tickvals": [*chart.x_ticks], "tickformat": f"+,.{decimals(chart.x_ticks)}f"}
+        return {**LAYOUT["xaxis"], "range": [low, high], **ticks}
     step = STEP[chart.x_kind][narrow]
-    ticks = [step * index for index in range(ceil(low / step), floor(high / step) + 1)]
-    return {**LAYOUT["xaxis"], "range": [low, high], "tickvals": ticks}
+    at = [step * index for index in range(ceil(low / step), floor(high / step) + 1)]
+    return {**LAYOUT["xaxis"], "range": [low, high], "tickvals": at}
 
 
-def _y_axis(chart: Chart) -> dict[str, Any]:
+def _y_axis(chart: Chart, measure: Measure) -> dict[str, Any]:
     low, high = (log10(end) if chart.y_log else end for end in chart.y_range)
     kind = "log" if chart.y_log else "linear"
     axis = {**LAYOUT["yaxis"], "type": kind, "range": [low, high], "tickvals": [*chart.y_ticks]}
     if chart.y_text:
-        return axis | {"ticktext": [*chart.y_text]}
-    decimals = max((_decimals(tick) for tick in chart.y_ticks), default=0)
-    return axis | {"tickformat": ",~g" if chart.y_log else f",.{decimals}f"}
+        return axis | {"ticktext": [short_name(text, chart, measure) for text in chart.y_text]}
+    needed = max((_decimals(tick) for tick in chart.y_ticks), default=0)
+    return axis | {"tickformat": ",~g" if chart.y_log else f",.{needed}f"}
 
 
 def _decimals(tick: float) -> int:

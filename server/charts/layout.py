@@ -5,56 +5,18 @@ from collections.abc import Callable, Iterator
 from math import floor, log10
 from typing import Any
 
-from server.charts.chart import At, Chart, Series
+from server.charts.chart import At, Chart
+from server.charts.margins import cell, end_label, has_row, margins
 from server.charts.places import spread, storeys
-from server.charts.scales import decimals
 from server.charts.template import CHARACTER, DIVISION, RULE, Measure
 
 Part = dict[str, Any]
-ENDS = 28  # px between the last point and the edge, beside the label itself
-
-
-def margins(chart: Chart, measure: Measure) -> dict[str, int]:
-    """Left and right are the same for all charts by age, so that an age stands on one vertical; the
-    right one of a trend fits its longest label."""
-    left, right, bottom = measure.left, measure.right, measure.bottom
-    ends = [_end_label(series, measure) for series in chart.series if series.at == "end"]
-    if ends:
-        character = CHARACTER * measure.text / 14.5
-        right = round(ENDS + character * max(map(len, ends)))
-        if measure.narrow:
-            left = max(30, round(12 + character * _longest_tick(chart)))
-    if _has_row(chart, measure, measure.width - left - right):
-        bottom += 12
-    return {"l": left, "r": right, "t": measure.top, "b": bottom, "pad": 0}
-
-
-def _longest_tick(chart: Chart) -> int:
-    """Characters of the longest number beside the scale."""
-    so = decimals(chart.y_ticks)
-    return max((len(f"{at:,.{so}f}") for at in chart.y_ticks), default=0)
 
 
 def placed(chart: Chart, measure: Measure, say: Callable[[str], str]) -> dict[str, list[Part]]:
     """Shapes and annotations."""
     canvas = _Canvas(chart, measure, say)
     return {"shapes": [*canvas.shapes()], "annotations": [*canvas.words()]}
-
-
-def _end_label(series: Series, measure: Measure) -> str:
-    return (series.short or series.label) if measure.narrow else series.label
-
-
-def _has_row(chart: Chart, measure: Measure, width: float) -> bool:
-    cells = chart.foot_row
-    needed = len(cells) * _cell(chart, measure)
-    return bool(cells) and measure.foot > 0 and width + measure.left >= needed
-
-
-def _cell(chart: Chart, measure: Measure) -> float:
-    """Width that a figure under a bar needs, with the white beside it, px."""
-    longest = max((len(text) for _, text in chart.foot_row), default=0)
-    return measure.foot * (0.48 + CHARACTER / 14.5 * longest)
 
 
 class _Canvas:
@@ -65,7 +27,7 @@ class _Canvas:
         self.margin = margins(chart, measure)
         self.width = measure.width - self.margin["l"] - self.margin["r"]
         self.height = measure.heights[chart.size] - self.margin["t"] - self.margin["b"]
-        self.row = _has_row(chart, measure, self.width)
+        self.row = has_row(chart, measure, self.width)
 
     def scaled(self, y: float) -> float:
         """As an annotation wants it: on a ratio scale its logarithm."""
@@ -88,7 +50,9 @@ class _Canvas:
     def shapes(self) -> Iterator[Part]:
         yield from self._rule()
         low, high = self.chart.y_range
-        if low < 0 < high:
+        if self.chart.x_kind == "amount":
+            yield _line({"xref": "x", "yref": "paper", "x0": 0, "x1": 0, "y0": 0, "y1": 1})
+        elif low < 0 < high:
             yield _line({"xref": "paper", "yref": "y", "x0": 0, "x1": 1, "y0": 0, "y1": 0})
         for broken in self.chart.breaks:
             at = {"xref": "x", "yref": "paper", "x0": broken.x, "x1": broken.x, "y0": 0, "y1": 1}
@@ -108,7 +72,7 @@ class _Canvas:
     def _rule(self) -> Iterator[Part]:
         """The graduated rule under the axis, every second division black."""
         low, high = self.chart.x_range
-        step = DIVISION[self.chart.x_kind]
+        step = self._division()
         base = {
             "type": "rect",
             "xref": "x",
@@ -129,6 +93,13 @@ class _Canvas:
             start, end = max(index * step, low), min((index + 1) * step, high)
             if index % 2 == 0 and start < end:
                 yield base | {"x0": start, "x1": end, "line": {"width": 0}, "fillcolor": "@ink"}
+
+    def _division(self) -> float:
+        """How far the graduated rule changes from black to white, in units of x."""
+        chart = self.chart
+        if chart.x_kind != "amount":
+            return DIVISION[chart.x_kind]
+        return (chart.x_ticks[1] - chart.x_ticks[0]) / 2 if len(chart.x_ticks) > 1 else 1.0
 
     def _tops(self) -> list[tuple[int, float]]:
         """For each mark the side of its label and its top as a share of the height; it may rise
@@ -243,6 +214,8 @@ class _Canvas:
     def _axis_word(self) -> Iterator[Part]:
         """ "age" or "year" at the end of the rule; on the phone the unit line says "by age"."""
         by_age = self.chart.x_kind == "age"
+        if self.chart.x_kind == "amount":
+            return
         if self.row or (by_age and self.measure.narrow):
             return
         yield self._word(
@@ -270,7 +243,7 @@ class _Canvas:
         got = spread(wanted, self.measure.text + 2.5, 4, self.height + 8)
         for (series, x, y), want, at in zip(ends, wanted, got, strict=True):
             yield self._word(
-                _end_label(series, self.measure),
+                end_label(series, self.measure),
                 _as_text(series.role),
                 x=x,
                 xref="x",
@@ -317,7 +290,7 @@ class _Canvas:
             return
         under: Part = {"y": 0, "yref": "paper", "yanchor": "top"}
         wanted = [self.px(x) for x, _ in chart.foot_row]
-        got = spread(wanted, _cell(chart, self.measure), -self.margin["l"], self.width)
+        got = spread(wanted, cell(chart, self.measure), -self.margin["l"], self.width)
         for (x, text), want, at in zip(chart.foot_row, wanted, got, strict=True):
             place: Part = {"x": x, "xref": "x", "xanchor": "center", "xshift": at - want}
             yield self._word(text, size=size, yshift=-34, **place, **under)

@@ -111,7 +111,36 @@ _HATCH = {
     "fillmode": "replace",
     "bgcolor": "rgba(0,0,0,0)",
 }
-_DRAW = {"line": _lines, "needles": _needles, "bars": _bars, "dots": _dots}
+
+
+def _reaches(series: Series, chart: Chart) -> Iterator[Trace]:
+    """From 0 to each amount, one row each, with a dot at its end."""
+    ends = list(zip(series.x, series.y, strict=True))
+    yield {
+        "type": "scatter",
+        "mode": "lines",
+        "x": [one for x, _ in ends for one in (0.0, _six(x), None)],
+        "y": [one for _, y in ends for one in (y, y, None)],
+        "line": {"color": f"@{series.role}", "width": WIDTH["this"]},
+        "hoverinfo": "skip",
+    }
+    yield {
+        "type": "scatter",
+        "mode": "markers",
+        "x": _short(series.x),
+        "y": _short(series.y),
+        "cliponaxis": False,
+        "marker": {"size": 8, "color": f"@{series.role}", "symbol": "circle"},
+    } | _hover(series, chart)
+
+
+_DRAW = {
+    "line": _lines,
+    "needles": _needles,
+    "bars": _bars,
+    "dots": _dots,
+    "reaches": _reaches,
+}
 
 
 def _between(chart: Chart) -> Iterator[Trace]:

@@ -78,4 +78,15 @@ RATIO = a_chart(
     key="ratio", y_log=True, y_range=(0.01, 1000.0), y_ticks=(0.1, 10.0), series=(LINE,)
 )
 BETWEEN = a_chart(key="between", between=(0, 1))
-ALL = (a_chart(), BARS, TREND, MARKED, RATIO, BETWEEN)
+RANKED = a_chart(
+    key="ranked",
+    x_kind="amount",
+    x_range=(-0.25, 0.1),
+    x_ticks=(-0.2, -0.1, 0.0, 0.1),
+    y_title="change",
+    y_range=(0.5, 2.5),
+    y_ticks=(2.0, 1.0),
+    y_text=("Northlade and the two Capes, men, 2021", "Quillmere, women, 2021"),
+    series=(Series("change", (-0.22, 0.05), (2.0, 1.0), draw="reaches", names=("a", "b")),),
+)
+ALL = (a_chart(), BARS, TREND, MARKED, RATIO, BETWEEN, RANKED)

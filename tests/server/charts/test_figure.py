@@ -8,7 +8,7 @@ import pytest
 
 from server.charts.chart import At, Chart, Note
 from server.charts.figure import figure
-from server.charts.layout import margins
+from server.charts.margins import margins
 from server.charts.template import NARROW, PRINT, WIDE
 from tests.house.tree import ROOT
 from tests.server.charts.records import ALL, BARS, BETWEEN, MARKED, RATIO, TREND, a_chart
