@@ -1,7 +1,5 @@
 """How the text of a file falls into a heading, lines and fields."""
 
-import csv
-import io
 from dataclasses import dataclass, field, replace
 
 import numpy as np
@@ -10,12 +8,14 @@ from numpy.typing import NDArray
 from server.intake.forms.delimiters import BLANKS, NAMES, delimited, without_blanks
 from server.intake.forms.found import Found
 from server.intake.forms.headings import joined
+from server.intake.forms.lines import LONGEST_HEADING, Lines, filled, lines, rows_of, taken
+from server.intake.forms.notes import notes
+from server.intake.forms.numbers import unknown_marks
 from server.intake.forms.opening import Opened, Tab, opened
 from server.intake.mapping import Form
 from server.intake.problems import Fault
 
-NEWLINE, QUOTE = 10, 34
-LONGEST_HEADING = 100_000  # signs looked at in the heading, and in the first rows
+MOST_ABOVE, MOST_HEADINGS = 1_000, 10  # rows
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,6 +26,7 @@ class Layout:
     form: Form  # as applied: encoding, delimiter and sheet as they were found
     encoding: str  # in words
     sure: tuple[str, ...]  # of encoding, delimiter and sheet: those not guessed
+    delimiter: str  # between the fields of the body
     columns: tuple[str, ...]
     top: tuple[tuple[str, ...], ...]  # rows above the heading
     body: bytes  # what follows the heading: UTF-8, lines ended by a line feed
@@ -35,10 +36,6 @@ class Layout:
     stray: int  # row with a quotation mark that neither opens nor ends a field; 0: there is none
     tabs: tuple[Tab, ...] = ()  # sheets of a workbook
     found: tuple[Found, ...] = field(default=())
-
-    @property
-    def delimiter(self) -> str:
-        return self.form.delimiter
 
     @property
     def row_count(self) -> int:
@@ -55,125 +52,88 @@ class Layout:
         if not len(wanted):
             return ()
         start = self.body[: min(self.ends[wanted[-1]], LONGEST_HEADING)].decode(errors="replace")
-        return tuple(row for row in rows_of(start, self.delimiter) if row)[:count]
+        return tuple(row for row in rows_of(start, self.delimiter) if any(row))[:count]
 
 
 def layout(content: bytes, name: str, form: Form | None = None) -> Layout:
     """Cut a file into heading, lines and fields, as `form` says or, where it says nothing, as the
     bytes themselves do. Never raises; what is wrong the checks of files find."""
     form = form or Form()
-    source = opened(content, form)
-    body, form, sure = _delimited(source, form)
-    above, rows = max(form.heading, 1) - 1, max(form.heading_rows, 1)
-    top, body, _ = _taken(body, above)
-    heading, body, torn = _taken(body, rows)
-    ends, fields, stray = _lines(body, form.delimiter)
-    lines = [row for line in heading for row in rows_of(line, form.delimiter) or [()]]
+    return laid_out(opened(content, form), name, form)
+
+
+def laid_out(source: Opened, name: str, form: Form) -> Layout:
+    """A table that is opened already, cut."""
+    body, sign, form, sure = _delimited(source, form)
+    above = min(max(form.heading, 1), MOST_ABOVE) - 1
+    deep = min(max(form.heading_rows, 1), MOST_HEADINGS)
+    top = taken(body, 0, above, sign)
+    heading = taken(body, top.end, deep, sign)
+    body = body[heading.end :]
+    cut, first = lines(body, sign), above + deep + 1
+    names = joined(heading.rows)
+    found = [*source.found, *_unknown(form), *unknown_marks(form)]
+    if below := notes(body, cut, sign, len(names)):
+        values = {"text": below.text}
+        rows = int(np.count_nonzero(cut.fields[below.line :]))
+        fault = Fault(row=first + below.line, last_row=first + below.last, rows=rows, values=values)
+        found.append(Found("notes_left_out", fault))
+        body, cut = body[: cut.starts[below.line]], cut.first(below.line)
     return Layout(
         name=f"{name} › {form.sheet}" if len(source.tabs) > 1 and form.sheet else name,
         form=form,
         encoding=source.label,
         sure=sure,
-        columns=joined(lines),
-        top=tuple(row for line in top for row in rows_of(line, form.delimiter)[:1] or [()]),
+        delimiter=sign,
+        columns=_all_named(names, body, cut, sign),
+        top=top.rows,
         body=body,
-        first=above + rows + 1,
-        ends=ends,
-        fields=fields,
-        stray=above + 1 if torn else stray and stray + above + rows,
+        first=first,
+        ends=cut.ends,
+        fields=cut.fields,
+        stray=above + 1 if top.torn or heading.torn else cut.stray and cut.stray + first - 1,
         tabs=source.tabs,
-        found=(*source.found, *_unknown(form)),
+        found=tuple(found),
+    )
+
+
+def _all_named(names: tuple[str, ...], body: bytes, cut: Lines, sign: str) -> tuple[str, ...]:
+    """A column without a heading is called by its place; where it holds nothing either, it stays
+    without a name and is left out."""
+    if all(names) or not any(names):
+        return names
+    held = filled(body, cut, sign, len(names))
+    return tuple(
+        name or (f"column {place}" if held[place - 1] else "")
+        for place, name in enumerate(names, start=1)
     )
 
 
 def _unknown(form: Form) -> list[Found]:
-    """A delimiter that is none, or rows of headings that cannot be."""
-    if form.delimiter not in NAMES:
-        return [Found("unknown_delimiter", Fault(values={"text": form.delimiter}))]
-    return []
+    """A delimiter that is none, or a heading where none can be."""
+    found = []
+    if form.delimiter and form.delimiter not in NAMES:
+        found.append(Found("unknown_delimiter", Fault(values={"text": form.delimiter})))
+    if not (0 < form.heading <= MOST_ABOVE and 0 < form.heading_rows <= MOST_HEADINGS):
+        values = {"row": form.heading, "rows": form.heading_rows, "most": MOST_ABOVE}
+        found.append(Found("bad_heading_setting", Fault(values=values)))
+    return found
 
 
-def _delimited(source: Opened, form: Form) -> tuple[bytes, Form, tuple[str, ...]]:
-    """The text with one sign between its fields, and the form with all that was found out."""
-    body, sure = source.body, [*source.sure]
-    delimiter = source.delimiter or form.delimiter
-    if not delimiter:
+def _delimited(source: Opened, form: Form) -> tuple[bytes, str, Form, tuple[str, ...]]:
+    """The text, the sign between its fields, and the form with all that was found out."""
+    body, sure, stated = source.body, list(source.sure), form.delimiter
+    if source.delimiter:  # a workbook: no sign that could be chosen
+        sign, stated = source.delimiter, ""
+        sure.append("delimiter")
+    elif not stated:
         cut = delimited(body, max(form.heading, 1) - 1)
-        delimiter = cut.delimiter
+        sign = stated = cut.delimiter
         sure += ["delimiter"] if cut.sure else []
     else:
+        sign = stated if stated in NAMES else ","
         sure.append("delimiter")
-    if delimiter == BLANKS:
-        body, delimiter = without_blanks(body), "\t"
-    form = replace(form, delimiter=delimiter, encoding=source.encoding, sheet=source.sheet)
-    return body, form, tuple(sure)
-
-
-def rows_of(text: str, delimiter: str) -> list[tuple[str, ...]]:
-    """Fields of some lines; of a field that is too long for the reader, nothing."""
-    try:
-        rows = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter or ",")
-        return [tuple(row) for row in rows]
-    except csv.Error:
-        return []
-
-
-def _taken(body: bytes, count: int) -> tuple[list[str], bytes, bool]:
-    """The first rows as text, the rest, and whether some quotation mark in them has no partner."""
-    rows, torn = [], False
-    for _ in range(count):
-        end = _row_end(body)
-        torn |= end < 0
-        line = body[: end if end >= 0 else None].partition(b"\n")[0] if end < 0 else body[:end]
-        rows.append(line.decode(errors="replace")[:LONGEST_HEADING].replace("\0", " "))
-        body = body[len(line) + 1 :]
-    return rows, body, torn
-
-
-def _row_end(body: bytes) -> int:
-    """Where the first row ends: at a line feed outside quotation marks; -1 where there is none."""
-    end = body.find(b"\n")
-    while 0 <= end < LONGEST_HEADING and body.count(b'"', 0, end) % 2:
-        end = body.find(b"\n", end + 1)
-    whole = len(body) if end < 0 else end
-    return -1 if body.count(b'"', 0, whole) % 2 else whole
-
-
-def _lines(body: bytes, delimiter: str) -> tuple[NDArray[np.int64], NDArray[np.int32], int]:
-    """Ends of the lines, fields in each, and the line (from 1) of the first stray quotation mark.
-
-    Line feeds and delimiters inside quotes do not count; a doubled quote closes and opens at once.
-    """
-    if not body:
-        return np.zeros(0, np.int64), np.zeros(0, np.int32), 0
-    text = np.frombuffer(body, np.uint8)
-    breaks, splits, stray = text == NEWLINE, text == ord(delimiter), -1
-    if b'"' in body:
-        stray = _stray(text, delimiter)
-        outside = np.bitwise_xor.accumulate(text == QUOTE) ^ True
-        breaks &= outside
-        splits &= outside
-    ends = np.flatnonzero(breaks)
-    if not len(ends) or ends[-1] != len(text) - 1:
-        ends = np.append(ends, len(text))
-    starts = np.append(0, ends[:-1] + 1)
-    fields = np.add.reduceat(splits, starts, dtype=np.int32) + 1
-    fields[starts == ends] = 0
-    line = 0 if stray < 0 else int(np.searchsorted(ends, stray)) + 1
-    return ends, fields.astype(np.int32), line
-
-
-def _stray(text: NDArray[np.uint8], delimiter: str) -> int:
-    """Where the first quotation mark stands that neither opens nor ends a field; -1: nowhere."""
-    marks = np.flatnonzero(text == QUOTE)
-    framed = np.concatenate([[NEWLINE], text, [NEWLINE]])
-    beside = np.array([NEWLINE, QUOTE, ord(delimiter)])
-    opens, closes = marks[0::2], marks[1::2]
-    wrong = np.concatenate(
-        [
-            opens[~np.isin(framed[opens], beside)],
-            closes[~np.isin(framed[closes + 2], beside)],
-            marks[-1:] if len(marks) % 2 else marks[:0],
-        ]
-    )
-    return int(wrong.min()) if len(wrong) else -1
+    if sign == BLANKS:
+        body, sign = without_blanks(body), "\t"
+    form = replace(form, delimiter=stated, encoding=source.encoding, sheet=source.sheet)
+    return body, sign, form, tuple(sure)

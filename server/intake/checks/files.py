@@ -20,7 +20,7 @@ def _told(key: str) -> Callable[[Layout], list[Fault]]:
 
 
 def _empty(file: Layout) -> Iterator[Fault]:
-    if not file.body.strip() and not "".join(file.columns) and not file.found:
+    if not file.body.strip() and not any(file.columns) and not file.top and not file.found:
         yield Fault()
 
 
@@ -35,9 +35,8 @@ def _stray_quote(file: Layout) -> Iterator[Fault]:
 
 
 def _blank_heading(file: Layout) -> Iterator[Fault]:
-    blank = [place for place, column in enumerate(file.columns, 1) if not column]
-    if blank or not file.columns:
-        yield Fault(row=file.form.heading, values={"place": blank[0] if blank else 1})
+    if not any(file.columns):
+        yield Fault(row=file.form.heading)
 
 
 def _doubled_heading(file: Layout) -> Iterator[Fault]:
@@ -149,6 +148,35 @@ CHECKS: tuple[Check[Layout], ...] = (
         find=_told("unknown_delimiter"),
     ),
     Check(
+        key="bad_heading_setting",
+        severity="error",
+        meaning="The mapping names a row for the heading where none can stand.",
+        found="the heading in row {row}, of {rows} rows",
+        expected="a row from 1 to {most}, and 1 to 10 rows",
+        remedy="Correct the mapping.",
+        find=_told("bad_heading_setting"),
+    ),
+    Check(
+        key="unknown_marks",
+        severity="error",
+        meaning="The mapping names marks of numbers that cannot be, or one mark for two things.",
+        found="“{decimal}” before decimals and “{thousands}” between thousands",
+        expected="a full stop or a comma before decimals, and another mark or none between "
+        "thousands",
+        remedy="Correct the mapping.",
+        find=_told("unknown_marks"),
+    ),
+    Check(
+        key="notes_left_out",
+        severity="warning",
+        meaning="Rows below the table hold text and no counts. They are taken for notes and left "
+        "out.",
+        found="“{text}”",
+        expected="rows of counts down to the end, or notes",
+        remedy="Look whether they are notes. If not, fill in what these rows lack.",
+        find=_told("notes_left_out"),
+    ),
+    Check(
         key="empty_file",
         severity="error",
         meaning="There is nothing in the file.",
@@ -179,10 +207,10 @@ CHECKS: tuple[Check[Layout], ...] = (
     Check(
         key="blank_heading",
         severity="error",
-        meaning="A column has no name.",
-        found="no name over column {place}",
-        expected="a name over every column, in the first row",
-        remedy="Name the column, or take it out.",
+        meaning="The row taken for the heading is blank, so that no column has a name.",
+        found="a blank heading",
+        expected="names over the columns",
+        remedy="Say in the mapping in which row the heading stands, or add one.",
         find=_blank_heading,
     ),
     Check(
@@ -230,7 +258,7 @@ KINDS = {check.key: check for check in CHECKS}
 def problems_of(file: Layout) -> list[Problem]:
     """All that is wrong with the file as a table of text; of what is no text, only that."""
     unopened = [one.key for one in file.found if KINDS[one.key].severity == "error"]
-    for only in (*unopened, "empty_file", "too_many_columns"):
+    for only in (*unopened, "empty_file", "blank_heading", "too_many_columns"):
         if problems := KINDS[only].problems(file, file.name):
             return problems
     return [problem for check in CHECKS for problem in check.problems(file, file.name)]

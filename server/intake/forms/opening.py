@@ -37,6 +37,7 @@ class Opened:
     delimiter: str = ""  # where it does not have to be found out
     sheet: str = ""
     tabs: tuple[Tab, ...] = ()
+    texts: tuple[str, ...] = ()  # of a workbook: numbers that stand there as texts
     found: tuple[Found, ...] = ()
 
 
