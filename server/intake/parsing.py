@@ -66,8 +66,6 @@ class Parsed:
     whole: str  # code of the area that is summed from the others; empty where none is
     successions: Successions = NOTHING  # not yet applied: the edition before has old codes too
     breaks: tuple[Break, ...] = ()
-    successions: Successions = NOTHING  # not yet applied: the edition before has old codes too
-    breaks: tuple[Break, ...] = ()
     unstated: tuple[Unstated, ...] = ()  # what became of counts that do not state all
 
     @property
