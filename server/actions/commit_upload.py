@@ -5,6 +5,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from server.accounts.viewer import Right, Viewer
+from server.actions import masking
 from server.actions.check_upload import handed
 from server.actions.laid_over import Base, made_of
 from server.intake.parsing import READER, Parsed, parse
@@ -64,10 +65,13 @@ def commit_upload(
         raise Stale(sound.base, number)
     change = change_of(session, sound, read(session, sound.upload), taking)
     prepared = editions.prepare(session, change)
+    masked = masking.mask_of(session, change)
     with transaction(session):
         editions.require_base(session, change.collection, change.base)
         uploads.require_unchanged(session, sound.upload)
-        return editions.write(session, prepared, by=by.name, note=note.strip(), at=now)
+        made = editions.write(session, prepared, by=by.name, note=note.strip(), at=now)
+        masking.keep(session, change, made.number, masked, at=now)
+    return made
 
 
 def require_sound(upload: Upload) -> Sound:
@@ -91,7 +95,7 @@ def require_sound(upload: Upload) -> Sound:
 
 def read(session: Session, upload: Upload) -> Parsed:
     """The kept bytes, read again with the kept mapping. Raises: Refused where they have errors."""
-    parsed = parse(handed(session, upload))
+    parsed = parse(handed(session, upload), None)
     _require_no_errors(upload, parsed.errors)
     return parsed
 

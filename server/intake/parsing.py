@@ -9,7 +9,6 @@ import numpy as np
 
 from engine.panel import SEXES
 from server.intake.areas_over_time import told
-from server.intake.areas_over_time import told
 from server.intake.cells import (
     AREA_UNSTATED,
     TOTAL,
@@ -37,7 +36,7 @@ from server.intake.rates import WorkedOut, worked_out
 from server.intake.schedules import RATE, Aside, Block, asides, blocks, ordered
 from server.intake.sharing import Unstated, settle
 from server.intake.sheets import Sheet, load
-from server.intake.standing import Standing
+from server.intake.standing import NOTHING_STANDS, Standing
 from server.intake.successions import NOTHING, Successions
 from server.store.records import Area, Break, Key, Vector
 
@@ -87,11 +86,11 @@ class _Sorted:
     ageless: list[Aside]  # counts of unknown age
 
 
-def parse(handed: Sequence[Handed], standing: Standing | None = None) -> Parsed:
+def parse(handed: Sequence[Handed], standing: Standing | None = NOTHING_STANDS) -> Parsed:
     """Read the files of one upload. Never raises on bad content: it collects all problems.
 
-    `standing` is what the edition before holds, against which the upload is checked too; None:
-    that is not known, and not asked. The schedules do not depend on it.
+    `standing` is what the edition before holds, against which the upload is checked too; with None
+    it is not. The schedules do not depend on it.
     Raises: ValueError where a role is unknown or comes twice.
     """
     roles, known = [file.role for file in handed], ", ".join(EVERY_ROLE)

@@ -39,6 +39,7 @@ class Kind:
     found: str  # texts of a problem, filled from its values
     expected: str
     remedy: str
+    why: str = ""  # what it guards against
     source: str = ""  # where the rule is published
 
 

@@ -40,6 +40,9 @@ class Standing:
         return tuple(_block(*of, found) for of, found in groups.items())
 
 
+NOTHING_STANDS = Standing()
+
+
 def _block(measure: str, grid: AgeGrid, found: list[tuple[int, Vector]]) -> Block:
     found.sort(key=lambda one: one[0])
     values = np.array([cell.values for _, cell in found])

@@ -1,16 +1,27 @@
-"""The registry of checks: one family a file, each exporting CHECKS."""
+"""The registry of checks: one family a file, each exporting CHECKS; chapters of families by the
+question they answer."""
+
+from dataclasses import dataclass
+from types import ModuleType
 
 from server.intake.checks import (
     ages,
     areas,
     breaks,
     columns,
+    completeness,
     fields,
     files,
+    jumps,
     lists,
     moved_counts,
+    old_ages,
     plausibility,
+    repeats,
     series,
+    sexes,
+    standing,
+    stated_ages,
     successions,
     totals,
     unstated,
@@ -18,11 +29,72 @@ from server.intake.checks import (
 )
 from server.intake.problems import Kind
 
-OF_LISTS = (lists, successions, moved_counts, breaks)
-FAMILIES = (files, columns, areas, fields, ages, series, totals, unstated, worked_out, plausibility, *OF_LISTS)
 
-KINDS: dict[str, Kind] = {check.key: check for family in FAMILIES for check in family.CHECKS}
+@dataclass(frozen=True, slots=True)
+class Chapter:
+    """Families of checks that answer one question about an upload."""
+
+    key: str
+    label: str
+    question: str
+    families: tuple[ModuleType, ...]
+
+    @property
+    def checks(self) -> tuple[Kind, ...]:
+        return tuple(check for family in self.families for check in family.CHECKS)
+
+
+CHAPTERS = (
+    Chapter(
+        "form",
+        "The form of the file",
+        "Can the file be read, and does every row say what it counts?",
+        (files, columns, areas, fields, ages),
+    ),
+    Chapter(
+        "sums",
+        "What belongs together",
+        "Do deaths, populations and totals stand beside one another as they must?",
+        (series, totals, unstated, worked_out, plausibility),
+    ),
+    Chapter(
+        "years",
+        "Years and areas",
+        "Does a year stand out, stand twice, or fail to come again?",
+        (jumps, repeats, standing),
+    ),
+    Chapter(
+        "ages",
+        "Sexes and ages",
+        "Are women and men, and the ages, as they are in any population?",
+        (sexes, old_ages, stated_ages),
+    ),
+    Chapter(
+        "completeness",
+        "Completeness",
+        "Were all deaths registered, and the same share of them in every year?",
+        (completeness,),
+    ),
+    Chapter(
+        "lists",
+        "Tables of areas and breaks",
+        "Does what is said of areas and breaks fit the areas and years that are held?",
+        (lists, successions, moved_counts, breaks),
+    ),
+)
+
+KINDS: dict[str, Kind] = {check.key: check for one in CHAPTERS for check in one.checks}
 
 # of all vectors of an upload together, when what does not state its sex, age or area is dealt with,
 # in the order in which a report names what they find
-OF_LEDGER = (*series.CHECKS, *plausibility.CHECKS)
+OF_LEDGER = (
+    *series.CHECKS,
+    *plausibility.CHECKS,
+    *jumps.CHECKS,
+    *repeats.CHECKS,
+    *standing.CHECKS,
+    *sexes.CHECKS,
+    *old_ages.CHECKS,
+    *stated_ages.CHECKS,
+    *completeness.CHECKS,
+)

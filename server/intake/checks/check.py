@@ -1,6 +1,6 @@
 """What an entry of the registry of checks is."""
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass, replace
 from typing import Generic, TypeVar
 
@@ -61,9 +61,20 @@ def listed(faults: Iterable[Fault]) -> list[Fault]:
             row=min(rows, default=None),
             last_row=max(rows, default=None),
             rows=sum(fault.rows for fault in rest),
-            others=len(rest) - 1,
+            others=sum(1 + fault.others for fault in rest) - 1,
         ),
     ]
+
+
+def several(found: NDArray[np.int64], fault: Callable[[int], Fault]) -> Iterator[Fault]:
+    """A fault of each of these, made for no more than are listed: the last stands for the rest."""
+    shown = found[: LISTED + 1].tolist()
+    rest = len(found) - len(shown)
+    for at in shown[: len(shown) if not rest else -1]:
+        yield fault(at)
+    if rest:
+        last = fault(shown[-1])
+        yield replace(last, rows=last.rows * (1 + rest), others=rest)
 
 
 def gathered(marks: Marks, rows: NDArray[np.int64], file: str = "") -> list[Fault]:

@@ -1,79 +1,15 @@
 """Checks of counts against the years around them, against births and against one another."""
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 
 import numpy as np
 
 from engine.ages import Array
-from server.intake.cells import YEARS, Flags, Ints, sexes_of
+from server.intake.cells import YEARS, Flags, sexes_of
 from server.intake.checks.check import Check
 from server.intake.ledger import Ledger, Line
-from server.intake.problems import Fault, Value, figure
+from server.intake.problems import Fault, figure
 from server.intake.schedules import MEASURES
-
-
-@dataclass(frozen=True, slots=True)
-class Limit:
-    """What counts as a jump: a share of the expected count, and that many of its square roots."""
-
-    share: float
-    roots: float
-
-
-AT_ALL_AGES = {"deaths": Limit(0.30, 6), "person_years": Limit(0.20, 6)}
-AT_AN_AGE = {"deaths": Limit(0.50, 8), "person_years": Limit(0.50, 8)}
-NEIGHBOURS = (-2, -1, 1, 2)  # years looked at, as far as the series has them
-
-
-def _expected(values: Array, place: Ints) -> Array:
-    """What the neighbouring years let expect, [line, age]: their median; where that lies between
-    two of them, what is nearest to the count itself. nan where fewer than two are there."""
-    around = np.full((len(NEIGHBOURS), *values.shape), np.nan)
-    lines = np.arange(len(place))
-    for number, step in enumerate(NEIGHBOURS):
-        other = np.roll(lines, -step)
-        apart = place[other] - place  # years, within one area and sex
-        near = (np.sign(apart) == np.sign(step)) & (np.abs(apart) <= max(NEIGHBOURS))
-        around[number, near] = values[other[near]]
-    around.sort(axis=0)  # nan last
-    count = np.sum(~np.isnan(around[:, :, 0]), axis=0)
-    low = around[(count - 1) // 2, lines]
-    high = around[np.minimum(count // 2, len(around) - 1), lines]
-    expected: Array = np.clip(values, low, high)
-    expected[count < 2] = np.nan
-    return expected
-
-
-def _jumps(values: Array, expected: Array, limit: Limit) -> Flags:
-    off = np.abs(values - expected)
-    return np.asarray((off > limit.share * expected) & (off > limit.roots * np.sqrt(expected + 1)))
-
-
-def _jumps_of(measure: str, ledger: Ledger) -> Iterator[Fault]:
-    """One fault for each area, sex and year: at all ages together, or at the worst age."""
-    for block in ledger.of(measure):
-        ages = np.concatenate([block.values.sum(axis=-1, keepdims=True), block.values], axis=-1)
-        expected = _expected(ages, block.place)
-        jumps = np.concatenate(
-            [
-                _jumps(ages[:, :1], expected[:, :1], AT_ALL_AGES[measure]),
-                _jumps(ages[:, 1:], expected[:, 1:], AT_AN_AGE[measure]),
-            ],
-            axis=-1,
-        )
-        off = np.where(jumps, np.abs(ages - expected), -1.0)
-        off[:, 0] = np.where(jumps[:, 0], np.inf, -1.0)
-        labels = ("all ages", *block.grid.labels)
-        for line in np.flatnonzero(jumps.any(axis=-1)).tolist():
-            age = int(off[line].argmax())
-            values: dict[str, Value] = {
-                "age": labels[age],
-                "found": float(ages[line, age]),
-                "usual": float(round(expected[line, age])),
-            }
-            row = block.row[line, max(age - 1, 0)]
-            yield block.fault(row, ledger.named(int(block.place[line])) | values)
 
 
 def _infants(ledger: Ledger) -> Iterator[Fault]:
@@ -94,6 +30,8 @@ def _infants(ledger: Ledger) -> Iterator[Fault]:
 
 
 def _neonates(ledger: Ledger) -> Iterator[Fault]:
+    if not ledger.of("neonatal_deaths"):
+        return
     deaths = ledger.lines.get("deaths", {})
     for place, (block, line) in ledger.lines.get("neonatal_deaths", {}).items():
         if place in deaths and _first_year(deaths[place]):
@@ -163,28 +101,6 @@ def _whole(values: Array) -> Flags:
 
 
 CHECKS: tuple[Check[Ledger], ...] = (
-    Check(
-        key="jump_of_deaths",
-        severity="warning",
-        meaning="Deaths differ from the median of the two years before and the two after by more "
-        "than 30 % at all ages together or 50 % in an age group, and by more than chance allows "
-        "(6 and 8 square roots of the expected count).",
-        found="{found} in {area}, {sex} {year}, age {age}",
-        expected="about {usual}, as in the years around it",
-        remedy="Compare with the source. If it is right, say so in the note.",
-        find=lambda ledger: _jumps_of("deaths", ledger),
-    ),
-    Check(
-        key="jump_of_population",
-        severity="warning",
-        meaning="The population differs from the median of the two years before and the two after "
-        "by more than 20 % at all ages together or 50 % in an age group, and by more than chance "
-        "allows (6 and 8 square roots of the expected count).",
-        found="{found} in {area}, {sex} {year}, age {age}",
-        expected="about {usual}, as in the years around it",
-        remedy="Compare with the source. If it is right, say so in the note.",
-        find=lambda ledger: _jumps_of("person_years", ledger),
-    ),
     Check(
         key="infant_deaths_exceed_births",
         severity="warning",

@@ -14,10 +14,15 @@ from server.intake.schedules import MEASURES
 
 
 def _missed(ledger: Ledger, here: str, there: str) -> Ints:
-    """Places that have one measure and not the other, where the other is not spoiled."""
+    """Places that have one measure and not the other, neither handed in nor standing, where the
+    other is not spoiled."""
     places = ledger.places(here)
-    known = np.concatenate([ledger.places(there), ledger.spoiled])
+    known = np.concatenate([ledger.places(there), ledger.spoiled, *_standing(ledger, there)])
     return np.zeros(0, np.int64) if ledger.unplaced else places[~np.isin(places, known)]
+
+
+def _standing(ledger: Ledger, measure: str) -> list[Ints]:
+    return [block.place for block in ledger.past if block.measure == measure]
 
 
 def _by_area(ledger: Ledger, places: Ints, measure: str) -> Iterator[Fault]:
@@ -28,13 +33,13 @@ def _by_area(ledger: Ledger, places: Ints, measure: str) -> Iterator[Fault]:
     for area, here in zip(areas.tolist(), each[: len(areas)], strict=True):
         lines = [ledger.lines[measure][place] for place in places[here].tolist()]
         rows = np.concatenate([block.row[line] for block, line in lines])
-        years = _years(np.unique(year_of[here]).tolist())
+        years = years_worded(np.unique(year_of[here]).tolist())
         sexes = ", ".join(SEXES[sex] for sex in np.unique(sex_of[here]))
         values = {"area": ledger.codes[area], "sexes": sexes, "years": years}
         yield lines[0][0].fault(rows, values)
 
 
-def _years(years: list[int]) -> str:
+def years_worded(years: list[int]) -> str:
     """2001, 2003–2007"""
     runs: list[list[int]] = []
     for year in years:
@@ -53,7 +58,8 @@ def _twice(ledger: Ledger) -> Iterator[Fault]:
 
 
 def _deaths_alone(ledger: Ledger) -> Iterator[Fault]:
-    yield from _by_area(ledger, _missed(ledger, "deaths", "person_years"), "deaths")
+    if ledger.standing is not None:
+        yield from _by_area(ledger, _missed(ledger, "deaths", "person_years"), "deaths")
 
 
 def _people_alone(ledger: Ledger) -> Iterator[Fault]:
@@ -102,7 +108,8 @@ def _nobody(ledger: Ledger) -> Iterator[Fault]:
 def _years_missing(ledger: Ledger) -> Iterator[Fault]:
     """Years without deaths between years with them, by area and sex."""
     totals = [total.place for total in ledger.age_totals]
-    known = np.unique(np.concatenate([ledger.places("deaths"), ledger.spoiled, *totals]))
+    places = [ledger.places("deaths"), ledger.spoiled, *totals, *_standing(ledger, "deaths")]
+    known = np.unique(np.concatenate(places))
     if ledger.unplaced or len(known) < 2:
         return
     area, sex, year = parts_of(known)
@@ -111,7 +118,7 @@ def _years_missing(ledger: Ledger) -> Iterator[Fault]:
     )
     gaps: dict[str, list[dict[str, Value]]] = defaultdict(list)
     for place in before.tolist():
-        missing = _years(list(range(int(year[place]) + 1, int(year[place + 1]))))
+        missing = years_worded(list(range(int(year[place]) + 1, int(year[place + 1]))))
         gaps[missing].append(ledger.named(int(known[place])))
     for missing, where in gaps.items():
         first = where[0]

@@ -8,7 +8,7 @@ from server.intake.checks.files import MOST_COLUMNS
 from server.intake.forms.unpacking import MOST_UNPACKED
 from server.intake.mapping import Form, Mapping
 from server.intake.parsing import Handed
-from server.intake.standing import Standing
+from server.intake.standing import NOTHING_STANDS, Standing
 from tests.server.intake.tables import (
     AGES,
     Row,
@@ -30,8 +30,8 @@ SOUND_BUT_LAST = without(SOUND, where(SOUND, year=2014))
 class Case:
     key: str
     files: Callable[[], list[Handed]]
-    also: str = ""  # another kind that the same fault must trip
-    standing: Standing | None = None
+    also: str = ""  # other kinds that the same fault must trip, between blanks
+    standing: Standing | None = NOTHING_STANDS
 
 
 def _bytes(content: bytes) -> Callable[[], list[Handed]]:
@@ -96,6 +96,9 @@ FORM_CASES = (
     Case("wrong_encoding", _formed(ISLE, encoding="utf-8")),
     Case("encoding_guessed", lambda: [counts(ISLE, area="", area_name="area")]),
     Case("unknown_delimiter", _formed(delimiter="x")),
+    Case("bad_heading_setting", _formed(heading=0)),
+    Case("unknown_marks", _formed(decimal=",", thousands=",")),
+    Case("notes_left_out", _bytes(csv(SOUND) + b"\nSource: the registry\n")),
     Case("bad_heading_setting", _formed(heading=0)),
     Case("unknown_marks", _formed(decimal=",", thousands=",")),
     Case("notes_left_out", _bytes(csv(SOUND) + b"\nSource: the registry\n")),

@@ -7,15 +7,14 @@ import pytest
 
 from server.intake.checks import KINDS
 from server.intake.checks.check import LISTED
-from server.intake.mapping import Mapping
 from server.intake.parsing import Handed, parse
 from server.intake.problems import Problem
 from server.intake.standing import Standing
 from server.store.records import Area, Key
 from tests.server.intake.cases import CASES, ONE, SOUND, WOMEN, Case
+from tests.server.intake.data_cases import DATA_CASES
 from tests.server.intake.list_cases import LIST_CASES
 from tests.server.intake.tables import (
-    YEARS,
     births,
     counts,
     csv,
@@ -29,19 +28,7 @@ from tests.server.intake.tables import (
 
 HERE = Path(__file__).parent
 SENTENCES: dict[str, str] = json.loads((HERE / "sentences.json").read_text(encoding="utf-8"))
-DENMARK = HERE.parents[1] / "published" / "denmark_deaths_personyears_1974_2012.csv"
-DANISH = Mapping(
-    year="year",
-    sex="sex",
-    age="age",
-    deaths="deaths",
-    population="person_years",
-    only_area="dk",
-    last_age_open=True,
-)
-
-
-EVERY = (*CASES, *LIST_CASES)
+EVERY = (*CASES, *DATA_CASES, *LIST_CASES)
 
 
 def problems(*files: Handed) -> list[Problem]:
@@ -55,7 +42,7 @@ def keys(*files: Handed) -> list[str]:
 @pytest.mark.parametrize("case", EVERY, ids=lambda case: case.key)
 def test_a_fault_trips_its_check_and_no_other(case: Case) -> None:
     found = parse(case.files(), case.standing).problems
-    assert {problem.key for problem in found} == {case.key, case.also} - {""}
+    assert {problem.key for problem in found} == {case.key, *case.also.split()}
     first = next(problem for problem in found if problem.key == case.key)
     assert str(first) == SENTENCES[case.key]
     assert first.severity == KINDS[case.key].severity
@@ -89,12 +76,6 @@ def test_clean_uploads_trip_none(files: list[Handed]) -> None:
     parsed = parse(files)
     assert parsed.problems == ()
     assert parsed.sound_count == parsed.row_count > 0
-
-
-def test_clean_danish_counts_trip_none() -> None:
-    parsed = parse([Handed("counts", "dk.csv", DENMARK.read_bytes(), DANISH)])
-    assert parsed.problems == ()
-    assert (parsed.row_count, len(parsed.cells)) == (7_800, 2 * 2 * 39)
 
 
 def test_many_rows_with_one_fault_are_one_problem() -> None:
@@ -171,48 +152,6 @@ def test_what_is_a_count(text: str) -> None:
     parsed = parse([counts(setting(SOUND, ONE, deaths=text))])
     assert parsed.problems == ()
     assert parsed.cells[Key("north", "f", "2012", "deaths")].values[-1] == 642
-
-
-JUMP = where(SOUND, area="north", year=2012, sex="f")
-
-
-@pytest.mark.parametrize(
-    ("age", "deaths", "trips"),
-    [("85+", 964, False), ("85+", 965, True), ("0", 64, False), ("0", 65, True)],
-)
-def test_a_jump_at_an_age_is_half_as_many_again_and_beyond_chance(
-    age: str, deaths: int, trips: bool
-) -> None:
-    found = keys(counts(setting(SOUND, where(JUMP, age=age), deaths=deaths)))
-    assert found == (["jump_of_deaths"] if trips else [])
-
-
-@pytest.mark.parametrize(("year", "trips"), [(2010, True), (2012, True), (2014, True)])
-def test_a_jump_is_found_in_the_last_year_too(year: int, trips: bool) -> None:
-    picked = where(SOUND, area="north", year=year, sex="f", age="85+")
-    (problem,) = problems(counts(setting(SOUND, picked, deaths=1_300)))
-    assert (problem.key, problem.values["year"]) == ("jump_of_deaths", str(year))
-
-
-def test_two_years_are_too_few_to_judge_either() -> None:
-    table = rows(years=(2013, 2014))
-    assert keys(counts(setting(table, where(table, year=2014, age="85+"), deaths=1_300))) == []
-
-
-def test_a_year_off_does_not_make_its_neighbours_look_off() -> None:
-    for years in (YEARS, range(2010, 2013)):
-        table = rows(("north",), years=years, sexes="f")
-        picked = where(table, year=years[1], age="85+")
-        found = problems(counts(setting(table, picked, deaths=2_000)))
-        assert [problem.values["year"] for problem in found] == [str(years[1])]
-
-
-def test_a_year_that_is_off_at_all_ages_is_one_problem() -> None:
-    table = [
-        row | {"deaths": int(str(row["deaths"])) * 4 // 3} if row in JUMP else row for row in SOUND
-    ]
-    (problem,) = problems(counts(table))
-    assert problem.values["age"] == "all ages"
 
 
 @pytest.mark.parametrize(
