@@ -18,6 +18,7 @@ from server.results.estimating import COMPARED, differences, estimates, stream
 from server.results.explaining import Explained, Sides, explain
 from server.results.holdings import Holdings, holdings
 from server.results.loading import Beside, Found, Loaded, Shared, load, overlap, shared_part
+from server.results.protecting import all_protected
 from server.results.questions import ComparisonQuestion, PopulationYear
 from server.results.revision import Moved, moved
 from server.store.connect import Session
@@ -86,7 +87,7 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
     asked += [both] if both else []
     years = _years_between(question, held, settings)
     beside = Beside.of(settings, held.areas, indicators.find(question.of))
-    loaded = load(session, collection, number, [*asked, *years], beside)
+    loaded = load(session, collection, number, [*asked, *years], beside, figures=question.figures)
     for wanted in (question.this, question.that):
         if wanted not in loaded:
             raise held.lacks(wanted, settings.years)
@@ -100,7 +101,11 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
     )
     shared = shared_part(loaded[both].panel, this.panel, that.panel) if both else None
     codes = (stream(collection, question.this), stream(collection, question.that))
-    difference = differences(keys, this.panel, that.panel, settings, codes, shared=shared)
+    difference = all_protected(
+        differences(keys, this.panel, that.panel, settings, codes, shared=shared),
+        this.loaded,
+        that.loaded,
+    )
     groups = _groups(grid)
     return Comparison(
         heading=heading,
@@ -123,7 +128,12 @@ def comparison(session: Session, heading: Heading, question: ComparisonQuestion)
         arriaga=_on(grid, decomposition.arriaga(this.table, that.table)),
         pollard=_on(grid, decomposition.pollard(this.table, that.table)),
         moved=moved(
-            session, heading, asked, beside, lambda newer: _headline(question, newer, settings)
+            session,
+            heading,
+            asked,
+            beside,
+            lambda newer: _headline(question, newer, settings),
+            figures=question.figures,
         ),
     )
 
@@ -179,7 +189,7 @@ def _side(
     keys: Sequence[str],
 ) -> Side:
     panel = loaded.panel.regroup(grid)
-    found = estimates(keys, panel, settings, stream(collection, of))
+    found = all_protected(estimates(keys, panel, settings, stream(collection, of)), loaded)
     chain = run(panel, settings)
     return Side(of, loaded, panel, chain.table, bool(chain.borrowed), chain.open_low, found)
 

@@ -122,7 +122,7 @@ def curves(session: Session, heading: Heading, question: CurvesQuestion) -> Curv
     held = holdings(session, collection, number)
     held.require(question.of)
     beside = Beside.of(settings, held.areas)
-    found = load(session, collection, number, [question.of], beside)
+    found = load(session, collection, number, [question.of], beside, figures=question.figures)
     if question.of not in found:
         raise held.lacks(question.of)
     loaded = found[question.of]
@@ -145,7 +145,12 @@ def curves(session: Session, heading: Heading, question: CurvesQuestion) -> Curv
         single=single(panel, level) if enough else None,
         related=related(chain, held.name(parent)) if enough and parent else None,
         moved=moved(
-            session, heading, [question.of], beside, lambda newer: _rise(newer, question.of, chosen)
+            session,
+            heading,
+            [question.of],
+            beside,
+            lambda newer: _rise(newer, question.of, chosen),
+            figures=question.figures,
         ),
     )
 

@@ -7,9 +7,9 @@ from typing import Any, NamedTuple, Self
 import numpy as np
 from numpy.typing import NDArray
 
-from engine.ages import AgeGrid
+from engine.ages import AgeGrid, Array
 from engine.indicators import Indicator
-from engine.panel import Panel
+from engine.panel import BIRTHS, Panel
 from engine.settings import Settings, span
 from server.results.questions import PopulationYear
 from server.results.releasing import released
@@ -27,6 +27,7 @@ class Loaded:
     status: str  # provisional where any part of it is
     withheld: frozenset[int] = frozenset()  # starts of its groups whose deaths only stand in
     protected: bool = False  # something it rests on is withheld
+    births_withheld: frozenset[str] = frozenset()  # of engine.panel.BIRTHS
 
     def withheld_on(self, grid: AgeGrid) -> NDArray[np.bool_]:
         """Groups of a grid it can be summed to that hold a withheld one, [age]."""
@@ -173,7 +174,8 @@ def _assembled(cells: Cells, pool: _Pool) -> Loaded | None:
     protected = women.protected or men.protected
     if own is None:
         status = _status((women.status, men.status))
-        return Loaded(together, status, women.withheld | men.withheld, protected)
+        withheld = women.births_withheld | men.births_withheld
+        return Loaded(together, status, women.withheld | men.withheld, protected, withheld)
     # the counts of persons may hold deaths of unknown sex: only the first-year rule is taken over
     births = np.where(np.isnan(own.panel.births), together.births, own.panel.births)
     mix = {name: getattr(together, name) for name in ("infant_weight", "infant_ratio")}
@@ -193,6 +195,7 @@ def _summed(cells: Cells, pool: _Pool) -> Loaded | None:
         _status([part.status for part in found]),
         frozenset().union(*(part.withheld for part in found)),
         any(part.protected for part in found),
+        frozenset().union(*(part.births_withheld for part in found)),
     )
 
 
@@ -212,11 +215,30 @@ def _single(cells: Cells, pool: _Pool, period: str) -> Loaded | None:
     held = [one if one is not None and not one.withheld else None for one in births]
     counted = [np.nan if one is None else float(one.values.sum()) for one in held]
     return Loaded(
-        replace(panel, births=np.array(counted)),
+        replace(panel, births=np.array(counted), counted=_counted(cells, pool, period, grid)),
         _status((deaths.status, years.status)),
         frozenset({*deaths.withheld, *years.withheld}),
         any(one is not None and bool(one.withheld) for one in (deaths, years, *births)),
+        frozenset(
+            name
+            for name, one in zip(BIRTHS, births, strict=True)
+            if one is not None and one.withheld
+        ),
     )
+
+
+def _counted(cells: Cells, pool: _Pool, period: str, grid: AgeGrid) -> Array | None:
+    """Deaths as counted, where others were shared out among them. Of a group whose deaths are
+    withheld nothing is told: those that stand in for them count."""
+    deaths, counted = (
+        cells.get(Key(pool.area, pool.sex, period, measure))
+        for measure in ("deaths", "counted_deaths")
+    )
+    if deaths is None or counted is None:
+        return None
+    hidden = np.isin(counted.grid.starts, list(deaths.withheld))
+    values = np.where(hidden, deaths.grid.regroup(deaths.values, counted.grid), counted.values)
+    return counted.grid.regroup(values, grid)
 
 
 def _status(parts: Sequence[str]) -> str:
@@ -256,8 +278,12 @@ def shared_part(shared: Panel, this: Panel, that: Panel) -> Panel:
     An area delivered as such may count fewer than its parts do: no more are shared than it counts.
     """
     both = shared.regroup(this.grid)
+    counted = None
+    if any(panel.counted is not None for panel in (both, this, that)):
+        counted = np.minimum(both.counts, np.minimum(this.counts, that.counts))
     return replace(
         both,
+        counted=counted,
         deaths=np.minimum(both.deaths, np.minimum(this.deaths, that.deaths)),
         births=np.minimum(both.births, np.minimum(this.births, that.births)),
     )

@@ -14,6 +14,7 @@ from server.results import models
 from server.results.estimating import COMPARED, EVERY, differences, estimates, stream
 from server.results.holdings import Holdings, holdings
 from server.results.loading import Beside, Found, Loaded, load
+from server.results.protecting import all_protected
 from server.results.questions import PopulationYear, PopulationYearQuestion
 from server.results.revision import Moved, moved
 from server.sentences import names
@@ -91,7 +92,7 @@ def population_year(
     previous = held.previous(question.of, settings.years)
     wanted = [question.of, *([previous] if previous else [])]
     beside = Beside.of(settings, held.areas)
-    loaded = load(session, collection, number, wanted, beside)
+    loaded = load(session, collection, number, wanted, beside, figures=question.figures)
     if question.of not in loaded:
         raise held.lacks(question.of, settings.years)
     panel = loaded[question.of].panel
@@ -103,7 +104,9 @@ def population_year(
         settings=settings,
         loaded=loaded[question.of],
         chain=chain,
-        estimates=estimates(EVERY, panel, settings, stream(collection, question.of)),
+        estimates=all_protected(
+            estimates(EVERY, panel, settings, stream(collection, question.of)), loaded[question.of]
+        ),
         before=_before(collection, question.of, previous, loaded, settings),
         rises=ageing.rises(panel, level=settings.level),
         gain=sensitivity.gain_per_percent(indicators.find("e0"), chain),
@@ -117,6 +120,7 @@ def population_year(
             [question.of],
             beside,
             lambda newer: _life_expectancy(newer.get(question.of), settings),
+            figures=question.figures,
         ),
     )
 
@@ -136,13 +140,19 @@ def _before(
         previous,
         loaded[previous],
         names.years(span(previous.period, settings.years)),
-        estimates(EVERY, that, settings, stream(collection, previous)),
-        differences(
-            COMPARED,
-            this.regroup(grid),
-            that.regroup(grid),
-            settings,
-            (stream(collection, of), stream(collection, previous)),
+        all_protected(
+            estimates(EVERY, that, settings, stream(collection, previous)), loaded[previous]
+        ),
+        all_protected(
+            differences(
+                COMPARED,
+                this.regroup(grid),
+                that.regroup(grid),
+                settings,
+                (stream(collection, of), stream(collection, previous)),
+            ),
+            loaded[of],
+            loaded[previous],
         ),
     )
 

@@ -30,6 +30,8 @@ def moved(
     wanted: Iterable[PopulationYear | Shared],
     beside: Beside,
     headline: Callable[[Found], float],
+    *,
+    figures: str,
 ) -> Moved | None:
     """None where no edition newer than the heading's stands.
 
@@ -40,5 +42,7 @@ def moved(
     newer = editions.find(session, heading.collection.code, heading.newest)
     if newer is None:
         return None
-    held = load(session, heading.collection.code, newer.number, wanted, beside)
+    held = load(
+        session, heading.collection.code, newer.number, wanted, beside, figures=figures
+    )
     return Moved(newer.number, newer.made, headline(held))

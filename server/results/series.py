@@ -19,6 +19,7 @@ from server.results.breaks import between, crossed, parting, shocks
 from server.results.courses import Course, newest, runs
 from server.results.holdings import Holdings, NotInEdition, holdings
 from server.results.loading import Beside, Found, Loaded, load
+from server.results.protecting import protected_batch
 from server.results.questions import PopulationYear, TrendQuestion
 from server.results.revision import Moved, moved
 from server.sentences.numbers import whole
@@ -116,8 +117,12 @@ def series(
     _require(held, question, wanted, indicator)
     collection, number = heading.collection.code, heading.edition.number
     beside = Beside.of(settings, held.areas, indicator)
-    loaded = load(session, collection, number, wanted, beside)
-    flat = _by_grid(collection, wanted, loaded, indicator, settings)
+    loaded = load(session, collection, number, wanted, beside, figures=question.figures)
+    flat = protected_batch(
+        _by_grid(collection, wanted, loaded, indicator, settings),
+        indicator,
+        [[loaded[one]] if one in loaded else [] for one in wanted],
+    )
     estimate = _across_a_break(flat, wanted, held.breaks, settings.years)[
         np.arange(len(wanted)).reshape(len(lines), len(periods))
     ]
@@ -131,10 +136,13 @@ def series(
     ]
     asked = courses.asked(ordered, lines, settings.years)
     overlaps = {one.shared for one in asked if one and one.shared}
-    loaded |= load(session, collection, number, overlaps) if overlaps else {}
-    changes = courses.changes(collection, asked, loaded, indicator, settings)[
-        np.arange(len(asked)).reshape(3, len(ordered))
-    ]
+    if overlaps:
+        loaded |= load(session, collection, number, overlaps, figures=question.figures)
+    changes = protected_batch(
+        courses.changes(collection, asked, loaded, indicator, settings),
+        indicator,
+        [[loaded[end] for end in (one.last, one.first)] if one else [] for one in asked],
+    )[np.arange(len(asked)).reshape(3, len(ordered))]
     told = [
         Course(run, changes[0, at], changes[1, at], changes[2, at])
         for at, run in enumerate(ordered)
@@ -166,6 +174,7 @@ def series(
             [headline],
             beside,
             lambda newer: _figure(newer.get(headline), indicator, settings),
+            figures=question.figures,
         ),
     )
 
