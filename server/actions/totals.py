@@ -123,7 +123,8 @@ def totalled(
     parts, summed = _parts(areas), _summed(areas)
     sums_before = {key for key in base if key.area in summed | _summed(base_areas)}
     own = {key: cell for key, cell in handed.items() if key.area not in summed}
-    standing = {key: cell for key, cell in base.items() if key not in sums_before} | own
+    gone = sums_before | _outdated(base, own)
+    standing = {key: cell for key, cell in base.items() if key not in gone} | own
     made = _persons(own, standing)
     standing.update(made)
     by_area: dict[str, dict[Slice, Vector]] = {}
@@ -150,7 +151,14 @@ def totalled(
         )
     for key in sorted(handed.keys() - own.keys()):
         _require_sum(key, handed[key], cells[key], len(parts[key.area]))
-    return Totalled(cells, frozenset(sums_before - cells.keys()), areas)
+    ended = (gone | _outdated(base, cells)) - cells.keys()
+    return Totalled(cells, frozenset(ended), areas)
+
+
+def _outdated(base: Cells, new: Cells) -> set[Key]:
+    """Deaths as counted whose deaths have come anew, and all of them counted."""
+    counted = (key for key in base if key.measure == COUNTED)
+    return {key for key in counted if key not in new and replace(key, measure=DEATHS) in new}
 
 
 def total(cells: list[Vector]) -> Vector:

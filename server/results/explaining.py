@@ -98,7 +98,7 @@ def _contribution(indicator: Indicator, sides: Sides, settings: Settings) -> Con
         *both,
         settings,
         streams=sides.codes,
-        shared=None if sides.shared is None else sides.shared.deaths,
+        shared=None if sides.shared is None else sides.shared.counts,
         groups=sides.groups,
     )
     return Contribution(

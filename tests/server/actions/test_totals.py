@@ -207,3 +207,48 @@ def test_the_parts_may_come_in_any_order() -> None:
 def test_a_schedule_of_an_area_that_is_not_listed_is_an_error_of_the_program() -> None:
     with pytest.raises(ValueError, match=r"areas that are not listed: \['x'\]"):
         totalled(cells("x"), FLAT, base={})
+
+
+def fewer(handed: dict[Key, Vector], *keys: Key, by: float = 1.25) -> dict[Key, Vector]:
+    """With deaths as counted beside some of the deaths."""
+    counted = {
+        replace(key, measure="counted_deaths"): replace(handed[key], values=handed[key].values / by)
+        for key in keys
+    }
+    return handed | counted
+
+
+def counted(area: str, sex: str = "f") -> Key:
+    return key(area, sex, measure="counted_deaths")
+
+
+def test_sums_know_the_deaths_counted_of_their_parts() -> None:
+    handed = fewer(cells("ab", measures=("deaths",)), key("a", "m"))
+    made = totalled(handed, FLAT, base={}).cells
+    men = handed[counted("a", "m")].values
+    persons = handed[key("a", "f")].values + men
+    assert made[counted("a", "p")].values.tolist() == persons.tolist()
+    assert made[counted("w", "m")].values.tolist() == (men + handed[key("b", "m")].values).tolist()
+    both = sum(handed[key("b", sex)].values for sex in "fm")
+    assert made[counted("w", "p")].values.tolist() == (persons + both).tolist()
+    assert not {counted("w"), counted("a"), counted("b", "p")} & set(made)
+
+
+def test_deaths_counted_end_where_deaths_come_anew_without() -> None:
+    first = fewer(cells("ab", measures=("deaths",)), key("a", "m"), key("b", "f"))
+    base = totalled(first, FLAT, base={}).cells
+    handed = only(cells("ab", measures=("deaths",), times=2.0), "a")
+    made = totalled(handed, FLAT, base=base, base_areas=FLAT)
+    assert made.ended == {counted("a", "m"), counted("a", "p"), counted("w", "m")}
+    women = handed[key("a")].values + first[counted("b")].values
+    assert made.cells[counted("w")].values.tolist() == women.tolist()
+    assert counted("w", "m") not in made.cells
+
+
+def test_deaths_counted_follow_when_the_other_sex_is_revised() -> None:
+    base = totalled(fewer(cells("a", measures=("deaths",)), key("a", "f")), FLAT[1:2], base={})
+    handed = cells("a", sexes="m", measures=("deaths",), times=3.0)
+    made = totalled(handed, FLAT[1:2], base=base.cells)
+    both = base.cells[counted("a")].values + handed[key("a", "m")].values
+    assert made.cells[counted("a", "p")].values.tolist() == both.tolist()
+    assert not made.ended

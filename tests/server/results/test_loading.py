@@ -11,10 +11,10 @@ from numpy.testing import assert_array_equal
 from engine.ages import AgeGrid
 from engine.panel import Panel
 from server.results.holdings import NotInEdition, holdings
-from server.results.loading import Beside, Shared, load, overlap, shared_part
+from server.results.loading import Beside, Shared, assembled, load, overlap, shared_part
 from server.results.questions import PopulationYear
 from server.store.connect import Session
-from server.store.records import Area
+from server.store.records import Area, Key
 from tests.factories import (
     GRIDS,
     cells,
@@ -220,3 +220,46 @@ def test_births_are_loaded_as_handed_in_and_persons_have_both_sexes(session: Ses
     for sex, expected in (("f", women.births), ("m", men.births)):
         assert_array_equal(loaded[of(f"north.{sex}.2014")].panel.births, expected)
     assert_array_equal(loaded[of("north.p.2014")].panel.births, [1900.0, np.nan, 5.0])
+
+
+def test_deaths_as_counted_come_with_the_deaths(session: Session) -> None:
+    stored_collection(session)
+    handed = cells("ab", sexes="fm", years=(2000, 2001))
+    women = Key("a", "f", "2001", "deaths")
+    vector = handed[women]
+    counted = replace(vector, values=vector.values / 2)
+    handed[replace(women, measure="counted_deaths")] = counted
+    stored_edition(session, handed)
+    found = load(session, "saltmarsh", 1, [of("a.f.2001"), of("a.m.2001"), of("a.p.2001")])
+    panel = found[of("a.f.2001")].panel
+    assert_array_equal(panel.counts, vector.values / 2)
+    assert_array_equal(panel.worth, np.full(4, 2.0))
+    assert found[of("a.m.2001")].panel.counted is None
+    men = handed[replace(women, sex="m")].values
+    assert_array_equal(found[of("a.p.2001")].panel.counts, vector.values / 2 + men)
+    two = Beside(years=2)
+    pooled = load(session, "saltmarsh", 1, [of("a.f.2001")], two)[of("a.f.2001")].panel
+    before = handed[replace(women, period="2000")].values
+    assert_array_equal(pooled.counts, vector.values / 2 + before)
+
+
+def test_no_more_counted_deaths_are_shared_than_either_side_has() -> None:
+    side = gompertz_panel(people=1e6)
+    fewer = replace(side, counted=side.deaths / 2)
+    both = shared_part(side, fewer, side)
+    assert_array_equal(both.counts, side.deaths / 2)
+    assert_array_equal(both.deaths, side.deaths)
+    assert shared_part(side, side, side).counted is None
+
+
+def test_of_a_withheld_group_no_counted_deaths_are_told() -> None:
+    handed = cells("a", sexes="f")
+    deaths, people = handed
+    hidden = replace(handed[deaths], withheld=(1,))
+    known = replace(handed[deaths], values=handed[deaths].values / 2)
+    counted = replace(deaths, measure="counted_deaths")
+    found = assembled(
+        {deaths: hidden, people: handed[people], counted: known}, [of("a.f.2001")], Beside()
+    )
+    told = handed[deaths].values * np.array([0.5, 1.0, 0.5, 0.5])
+    assert_array_equal(found[of("a.f.2001")].panel.counts, told)
