@@ -16,8 +16,9 @@ from server.results.keys import (
     Items,
     Keys,
 )
+from server.results.releasing import FULL, masked
 from server.sentences.text import _
-from server.store import areas, breaks, changes, editions
+from server.store import areas, breaks, changes, editions, masks
 from server.store.connect import Session
 from server.store.errors import Missing
 from server.store.heading import Heading
@@ -188,8 +189,7 @@ def found_changes(session: Session, heading: Heading, question: ChangesQuestion)
     code, now = heading.collection.code, heading.edition.number
     then = earlier(session, heading, question.since or default_since(session, heading))
     altered = tuple(
-        Altered(key, *pair)
-        for key, pair in changes.differing(session, code, then.number, now).items()
+        Altered(key, *pair) for key, pair in _differing(session, code, then.number, now, question)
     )
     trees = tuple(areas.listing(session, code, number) for number in (then.number, now))
     moved, touched = headlines(
@@ -206,6 +206,30 @@ def found_changes(session: Session, heading: Heading, question: ChangesQuestion)
         areas=_areas(*trees),
         basis=_basis(then, heading.edition),
         breaks=_breaks(session, code, then.number, now),
+    )
+
+
+def _differing(
+    session: Session, code: str, then: int, now: int, question: ChangesQuestion
+) -> Iterable[tuple[Key, changes.Pair]]:
+    """The schedules that differ, as they may be shown: of one whose withheld counts alone moved
+    nothing is told."""
+    pairs = changes.differing(session, code, then, now).items()
+    protected = masks.find(session, code, (then, now)) if question.figures != FULL else {}
+    for key, pair in pairs:
+        old, new = (
+            vector if vector is None else masked({key: vector}, protected.get(number))[key]
+            for number, vector in zip((then, now), pair, strict=True)
+        )
+        if not protected or _unlike(old, new):
+            yield key, (old, new)
+
+
+def _unlike(then: Vector | None, now: Vector | None) -> bool:
+    if then is None or now is None:
+        return then is not now
+    return (then.status, then.grid, then.estimated) != (now.status, now.grid, now.estimated) or (
+        not np.array_equal(then.values, now.values, equal_nan=True)
     )
 
 

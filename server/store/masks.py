@@ -4,6 +4,7 @@ import datetime as dt
 import hashlib
 import json
 import zlib
+from collections.abc import Iterable
 from collections.abc import Mapping as Lookup
 from dataclasses import dataclass
 from functools import lru_cache
@@ -58,13 +59,17 @@ def released(
     if found is None:
         return cells, None
     if not found.vector:
-        raise Refused(
-            "Edition {edition} has no mask under the policy that holds, so that nothing of it can"
-            " be released. Set the policy of {collection} again.",
-            edition=edition,
-            collection=collection,
-        )
+        raise _no_mask(collection, edition)
     return cells, Protected(read(found.status), unpacked(found.vector))
+
+
+def _no_mask(collection: str, edition: int) -> Refused:
+    return Refused(
+        "Edition {edition} has no mask under the policy that holds, so that nothing of it can be"
+        " released. Set the policy of {collection} again.",
+        edition=edition,
+        collection=collection,
+    )
 
 
 def _mask(collection: str, edition: int) -> Select[*tuple[Any, ...]]:
@@ -95,6 +100,36 @@ def _mask(collection: str, edition: int) -> Select[*tuple[Any, ...]]:
         )
         .where(policy.collection_id == of, policy.number == newest)
     )
+
+
+def find(session: Session, collection: str, editions: Iterable[int]) -> dict[int, Protected]:
+    """What protects these editions under the policy that holds, by number; empty where there is no
+    policy. One statement. Raises: Refused where the policy lacks a mask of one of them."""
+    wanted = tuple(editions)
+    policy, mask = tables.Policy, tables.Mask
+    of = collections.id_of(collection)
+    newest = select(func.max(policy.number)).where(policy.collection_id == of).scalar_subquery()
+    rows = session.execute(
+        select(policy.terms, mask.edition, mask.content)
+        .outerjoin(
+            mask,
+            and_(
+                mask.collection_id == policy.collection_id,
+                mask.policy == policy.number,
+                mask.edition.in_(wanted),
+            ),
+        )
+        .where(policy.collection_id == of, policy.number == newest)
+    ).all()
+    found = {
+        row.edition: Protected(read(row.terms), unpacked(row.content))
+        for row in rows
+        if row.content
+    }
+    for number in wanted if rows else ():
+        if number not in found:
+            raise _no_mask(collection, number)
+    return found
 
 
 def of_editions(session: Session, collection: str, policy: int) -> dict[int, Kept]:
