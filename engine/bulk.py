@@ -37,7 +37,6 @@ Maker = Literal["compiled", "numpy"]
 NUMBERS = ("e0", "e65", "median", "mode_raw", "edagger", "H", "gini", "sd0")
 COLUMNS = in_place.COLUMNS
 CELLS = 65_536  # of a column in a block: half a megabyte
-ROWS = 24_576  # cells of a column in a block that is worked on in place
 MOST = 900.0  # mean up to which counts are drawn by the table of their distribution
 
 
@@ -122,15 +121,10 @@ def fill(
 ) -> None:
     """Tables of populations in a row, by the numpy engine, into columns [row, age] and numbers
     [row] that are there already."""
-    if not followed(settings):
-        return _through_the_chain(rows, settings, columns, numbers, np.arange(len(rows.deaths)))
-    size = max(1, min(ROWS // len(rows.grid), len(rows.deaths)))
-    room, odd = in_place.Rows.of(rows.grid, settings, size), []
-    for first in range(0, len(rows.deaths), size):
-        where = slice(first, first + size)
-        block = ({name: part[where] for name, part in kept.items()} for kept in (columns, numbers))
-        odd.append(~in_place.fill(rows[where], room, *block))
-    return _through_the_chain(rows, settings, columns, numbers, _places(odd))
+    which = np.arange(len(rows.deaths))
+    if followed(settings):
+        which = np.flatnonzero(~in_place.fill(rows, settings, columns, numbers))
+    _through_the_chain(rows, settings, columns, numbers, which)
 
 
 def _through_the_chain(
@@ -178,24 +172,19 @@ def simulated(
         )
     rows, names = flat(panel), np.asarray(streams).ravel().tolist()
     found = np.empty((draws, len(names)))
-    counts, worth = rows.counts, rows.worth
     if by == "compiled":
         from engine.compiled.chance import Sampler
         from engine.compiled.rules import rules
 
         sampler = Sampler(rules(panel.grid, settings), draws)
         for row, code in enumerate(names):  # a keyed stream is one population's
-            deaths = _drawn(counts[row], generator(purpose, code), draws, sampler.counts)
-            if worth is not None:
-                deaths *= worth[row][:, None]
+            deaths = _drawn(rows.deaths[row], generator(purpose, code), draws, sampler.counts)
             found[:, row] = sampler.expectancies(
                 deaths, rows.exposure[row], rows.infant_weight[row], rows.infant_ratio[row]
             )
     else:
         for row, code in enumerate(names):
-            deaths = _drawn(counts[row], generator(purpose, code), draws, _counts)
-            if worth is not None:
-                deaths *= worth[row][:, None]
+            deaths = _drawn(rows.deaths[row], generator(purpose, code), draws, _counts)
             chain = run(_copies(rows[row], deaths.T), settings)
             found[:, row] = chain.table.ex[:, 0]
     return Expectancies(found.reshape(draws, *panel.batch_shape), version(by))
@@ -233,7 +222,7 @@ def _explain(
     """upper minus lower by numpy, panels [pair], into by_age [pair, age] and difference [pair]."""
     which, ages = np.arange(len(difference)), len(lower.grid)
     if followed(settings):
-        size = max(1, min(ROWS // ages, len(difference)))
+        size = max(1, min(in_place.CELLS // ages, len(difference)))
         room, odd = in_place_line.Room.of(lower.grid, settings, size), []
         for first in range(0, len(difference), size):
             part = slice(first, first + size)

@@ -1,9 +1,10 @@
-"""Tables and differences of ordinary populations by numpy, each step into arrays kept for it.
+"""Tables of ordinary populations by numpy, each step into arrays kept for it.
 
-For whole collections: what `engine.chain.run` and `engine.decomposition.contributions` give, where
-no join, bound or gap asks for more than plain arithmetic. A population is one row of memory and
-each step runs over a block of rows that stays in the cache; the rest is marked and left to the
-chain. Whether a row is ordinary depends on nothing but the row.
+For whole collections: what `engine.chain.run` and the indicators give, where no join or gap asks
+for more than plain arithmetic. A population is one row of memory and each step runs over a block of
+rows that stays in the cache, as one long line of cells where it can; what is a number a row is
+worked out before and after, for all rows at once. The rows that are not ordinary are marked and
+left to the chain. Whether one is depends on nothing but the row.
 """
 
 from dataclasses import dataclass
@@ -26,8 +27,10 @@ from engine.stages.separation import (
 from engine.stages.smoothing import adult_groups
 
 Flags = NDArray[np.bool_]
+Places = NDArray[np.intp]
 
 COLUMNS = ("mx", "ax", "qx", "lx", "dx", "Lx", "Tx", "ex")
+CELLS = 24_576  # of a column in a block
 BELOW_ONE = 1 - 1e-12  # a qx under this is not bound
 LEAST = 1e-200  # a share of births by which what is summed above it is divided without loss
 
@@ -53,145 +56,191 @@ def early_rules(grid: AgeGrid, settings: Settings) -> list[tuple[Pieces, Pieces]
 
 @dataclass(frozen=True, slots=True)
 class Rows:
-    """What is the same for every row, and room for a block: [row, age] or [row, closed group]."""
+    """What is the same for every row, and room for a block. Widths are [row, age] or, where all
+    closed groups are as wide, one number, which is read the fastest; those of the open group count
+    for nothing."""
 
     grid: AgeGrid
-    rules: list[tuple[Pieces, Pieces]]
-    n: Array  # closed groups
-    half: Array
-    first: Array  # [row, closed group]; room for what is worked out and used at once
-    second: Array
-    ages: Array  # ages at death of each group, [row, age]
+    n: Array
+    before: Array  # of the group before
+    first: Array  # [row, age]; room for what is worked out and used at once
+    inside: Array  # [row, age]; years that those who die in a group live in it
+    flags: Flags  # [row, age]; room
 
     @classmethod
-    def of(cls, grid: AgeGrid, settings: Settings, rows: int) -> "Rows":
-        closed = np.tile(grid.widths[:-1], (rows, 1))
-        first, second = np.empty_like(closed), np.empty_like(closed)
-        ages = np.empty((rows, len(grid)))
-        return cls(grid, early_rules(grid, settings), closed, closed / 2, first, second, ages)
+    def of(cls, grid: AgeGrid, rows: int) -> "Rows":
+        n, shape = np.append(grid.widths[:-1], grid.widths[-2]), (rows, len(grid))
+        n, before = (
+            one[None, :1] if np.all(n == n[0]) else np.tile(one, (rows, 1))
+            for one in (n, np.roll(n, 1))
+        )
+        return cls(grid, n, before, np.empty(shape), np.empty(shape), np.empty(shape, bool))
+
+    def some(self, rows: int) -> "Rows":
+        """The same for so many rows."""
+        n, before = self.n[:rows], self.before[:rows]
+        return Rows(self.grid, n, before, self.first[:rows], self.inside[:rows], self.flags[:rows])
 
 
-def fill(panel: Panel, rows: Rows, columns: dict[str, Array], numbers: dict[str, Array]) -> Flags:
-    """Tables of a block into columns [row, age] and what is read off them into numbers [row]; which
-    rows are ordinary, [row]. The others hold nothing of use."""
+@dataclass(frozen=True, slots=True)
+class Block:
+    """Columns of a block, each [row, age]."""
+
+    mx: Array
+    ax: Array
+    qx: Array
+    lx: Array
+    dx: Array
+    Lx: Array
+    Tx: Array
+    ex: Array
+
+
+def fill(
+    panel: Panel, settings: Settings, columns: dict[str, Array], numbers: dict[str, Array]
+) -> Flags:
+    """Tables of populations in a row into columns [row, age] and what is read off them into numbers
+    [row]; which rows are ordinary, [row]. The others hold nothing of use."""
+    rows, ages = panel.deaths.shape
+    size = max(1, min(CELLS // ages, rows))
+    room, places = Rows.of(panel.grid, size), np.zeros((2, rows), np.intp)
     with np.errstate(all="ignore"):
-        np.divide(panel.deaths, panel.exposure, out=columns["mx"])
-        ordinary = _columns(panel, rows, columns)
-        _numbers(rows, columns, numbers)
-    return ordinary
+        separation = _separation(panel, early_rules(panel.grid, settings))
+        for first in range(0, rows, size):
+            where = slice(first, min(first + size, rows))
+            block = Block(*(columns[name][where] for name in COLUMNS))
+            some = room.some(len(block.mx))
+            np.divide(panel.deaths[where], panel.exposure[where], out=block.mx)
+            _die(some, {group: ax[where] for group, ax in separation.items()}, block)
+            _live(some, block)
+            _sums(some, block, {key: numbers[key][where] for key in numbers})
+            _places(some, block, places[:, where])
+        _beyond_the_last(panel.grid, columns, numbers)
+        _numbers(panel.grid, columns, places, numbers)
+        return np.asarray(np.isfinite(columns["lx"][:, -1]) & np.isfinite(columns["mx"][:, -1]))
 
 
-def _columns(panel: Panel, rows: Rows, columns: dict[str, Array]) -> Flags:
-    mx, ax, qx, lx, dx, Lx, Tx, ex = (columns[name] for name in COLUMNS)
-    count = len(mx)
-    n, t, p = rows.n[:count], rows.first[:count], rows.second[:count]
-    m, a, q = mx[:, :-1], ax[:, :-1], qx[:, :-1]
-    a[:] = rows.half[:count]
-    for k, rule in enumerate(rows.rules):
-        a[:, k] = by_infant_rate(rule, mx[:, 0], panel.infant_weight, panel.infant_ratio).ax
-    ax[:, -1] = np.where(mx[:, -1] == 0, np.nan, 1 / mx[:, -1])  # nobody died, nothing is known
-    np.multiply(a, m, out=t)
-    full = np.nonzero(t > 1)
-    a[full] = 1 / m[full]  # no more can die than enter
-    np.subtract(n, a, out=t)
-    t *= m
-    t += 1
-    np.multiply(n, m, out=q)
-    q /= t
-    q[full] = np.minimum(q[full], 1)
+def _separation(panel: Panel, rules: list[tuple[Pieces, Pieces]]) -> dict[int, Array]:
+    """ax of the first groups and of the open one, which have rules of their own: [row] by group."""
+    m0, last, found = _rate(panel, 0), _rate(panel, -1), {}
+    for group, rule in enumerate(rules):
+        m = _rate(panel, group)
+        a = by_infant_rate(rule, m0, panel.infant_weight, panel.infant_ratio).ax
+        found[group] = np.where(a * m > 1, 1 / m, a)  # no more can die than enter
+    found[len(panel.grid) - 1] = np.where(last == 0, np.nan, 1 / last)  # nobody died: not known
+    return found
+
+
+def _rate(panel: Panel, group: int) -> Array:
+    return np.asarray(panel.deaths[:, group] / panel.exposure[:, group])
+
+
+def _die(rows: Rows, separation: dict[int, Array], block: Block) -> None:
+    """ax and qx = n m / (1 + (n - a) m)."""
+    mx, ax, qx, after, widths = block.mx, block.ax, block.qx, rows.first, rows.grid.widths
+    ax[:] = rows.n / 2
+    np.multiply(mx, rows.n / 2, out=after)
+    full = np.flatnonzero(np.greater(after, 1, out=rows.flags))  # more would die than enter
+    m, n = mx.ravel()[full], widths[full % len(widths)]
+    ax.ravel()[full] = 1 / m
+    after.ravel()[full] = (n - 1 / m) * m
+    for group, a in separation.items():
+        ax[:, group] = a
+        after[:, group] = (widths[group] - a) * mx[:, group]
+    after += 1
+    np.multiply(mx, rows.n, out=qx)
+    qx /= after
+    qx.ravel()[full] = np.minimum(qx.ravel()[full], 1)
+    for group in separation:
+        qx[:, group] = np.minimum(qx[:, group], 1)
     qx[:, -1] = 1.0
-    lx[:, 0] = 1.0
-    np.subtract(1, q, out=p)
-    np.multiply.accumulate(p, axis=1, out=lx[:, 1:])
-    np.multiply(lx, qx, out=dx)
-    np.multiply(n, lx[:, 1:], out=t)
-    np.multiply(ax, dx, out=Lx)
-    Lx[:, :-1] += t
-    np.add.accumulate(Lx[:, ::-1], axis=1, out=Tx[:, ::-1])
-    np.divide(Tx, lx, out=ex)
-    _beyond_the_last(rows, columns)
-    return np.asarray(np.isfinite(mx.sum(axis=1)))
 
 
-def _beyond_the_last(rows: Rows, columns: dict[str, Array]) -> None:
+def _live(rows: Rows, block: Block) -> None:
+    """From lx to ex. A step that reads the group beside reads on into the next row; what it makes
+    of that is written over, or nothing."""
+    lx, dx, Lx, px = block.lx, block.dx, block.Lx, rows.first
+    np.subtract(1, block.qx.ravel()[:-1], out=px.ravel()[1:])  # of the group before
+    px[:, 0] = 1.0
+    np.multiply.accumulate(px, axis=1, out=lx)
+    np.multiply(lx, block.qx, out=dx)
+    np.multiply(block.ax, dx, out=rows.inside)
+    through = np.multiply(lx, rows.before, out=rows.first)  # years in the group before
+    through[:, 0] = 0.0
+    np.add(rows.inside.ravel()[:-1], through.ravel()[1:], out=Lx.ravel()[:-1])
+    Lx[-1, -1] = rows.inside[-1, -1]
+    np.add.accumulate(Lx[:, ::-1], axis=1, out=block.Tx[:, ::-1])
+    np.divide(block.Tx, np.maximum(lx, LEAST, out=rows.first), out=block.ex)
+
+
+def _sums(rows: Rows, block: Block, numbers: dict[str, Array]) -> None:
+    """With v the years that those who die in a group live in it: of e-dagger, d e less (v / n)
+    (e(x) - e(x+n)); of gini the years that two of one table are both alive, l v + l(x+n) L, and
+    half of l v in the open group; of sd0 the variance, d (x + a - e0)^2, and v a more where lives
+    in the open group are unlike."""
+    ax, lx, dx, ex, inside = block.ax, block.lx, block.dx, block.ex, rows.inside
+    lost, both, squares = (numbers[key] for key in ("edagger", "gini", "sd0"))
+    part = np.divide(inside, rows.n, out=rows.first)
+    part[:, -1] = 0.0
+    np.vecdot(dx, ex, out=lost)
+    lost -= np.vecdot(part, ex)
+    lost += np.vecdot(part[:, :-1], ex[:, 1:])
+    np.vecdot(inside, lx, out=both)
+    both += np.vecdot(block.Lx[:, :-1], lx[:, 1:])
+    both -= inside[:, -1] * lx[:, -1] / 2
+    away = np.add(ax, np.array(rows.grid.starts, float), out=rows.first)
+    away -= ex[:, :1]
+    away *= away
+    np.vecdot(dx, away, out=squares)
+    squares += inside[:, -1] * ax[:, -1]
+
+
+def _places(rows: Rows, block: Block, places: Places) -> None:
+    """The first group that no more than half reach, 0 where more reach each; and which adult group
+    has most deaths a year."""
+    np.argmax(np.less_equal(block.lx, 0.5, out=rows.flags), axis=1, out=places[0])
+    groups, density = adult_groups(rows.grid), block.dx
+    if rows.n.size > 1:
+        density = np.divide(density, rows.n, out=rows.first)
+    if groups.start < groups.stop:
+        np.argmax(density[:, groups], axis=1, out=places[1])
+
+
+def _beyond_the_last(grid: AgeGrid, columns: dict[str, Array], numbers: dict[str, Array]) -> None:
     """ex at ages that next to nobody in the table reaches, from the top: the years lived in the
-    group and those left after it."""
-    ax, qx, lx, ex = (columns[name] for name in ("ax", "qx", "lx", "ex"))
-    few = np.flatnonzero(lx[:, -1] < LEAST)
-    if not len(few):
-        return
-    x = len(rows.grid) - 1
+    group and those left after it; and e-dagger, which rests on the lowest of them."""
+    ax, qx, lx, dx, ex = (columns[name] for name in ("ax", "qx", "lx", "dx", "ex"))
+    few, x = np.flatnonzero(lx[:, -1] < LEAST), len(grid) - 1
     beyond, left = lx[few, x] < LEAST, ax[few, x]
     while beyond.any():
-        ex[few, x] = np.where(beyond, left, ex[few, x])
+        missed = np.where(beyond, left - ex[few, x], 0.0)
+        ex[few, x] += missed
         x -= 1
-        q = qx[few, x]
-        left = ax[few, x] * q + (1 - q) * rows.n[0, x] + (1 - q) * left
+        a, q, n = ax[few, x], qx[few, x], grid.widths[x]
+        numbers["edagger"][few] += dx[few, x] * a / n * missed
+        left = a * q + (1 - q) * n + (1 - q) * left
         beyond = lx[few, x] < LEAST
 
 
-def _numbers(rows: Rows, columns: dict[str, Array], numbers: dict[str, Array]) -> None:
-    ax, lx, dx, ex = (columns[name] for name in ("ax", "lx", "dx", "ex"))
-    e0, each = ex[:, 0], np.arange(len(ex))
-    lost = _lost(rows, ax, dx, ex)
+def _numbers(
+    grid: AgeGrid, columns: dict[str, Array], places: Places, numbers: dict[str, Array]
+) -> None:
+    """From sums and places to the numbers; the median is nan in the open group, the mode in the
+    last closed one."""
+    lx, ex, starts, groups = (
+        columns["lx"],
+        columns["ex"],
+        np.array(grid.starts, float),
+        adult_groups(grid),
+    )
+    e0, below, mode = ex[:, 0], places[0], groups.start + places[1]
     numbers["e0"][:] = e0
-    numbers["e65"][:] = ex[:, rows.grid.position(65)] if rows.grid.has(65) else np.nan
-    numbers["median"][:] = _median(rows, lx, each)
-    numbers["mode_raw"][:] = _mode(rows, dx)
-    numbers["edagger"][:] = lost
-    numbers["H"][:] = lost / e0
-    numbers["gini"][:] = 1 - _both_alive(rows, ax, lx) / e0
-    ages = rows.ages[: len(ex)]
-    np.add(np.array(rows.grid.starts, float), ax, out=ages)
-    ages -= e0[:, None]
-    ages *= ages
-    ages[:, -1] += ax[:, -1] ** 2
-    ages *= dx
-    numbers["sd0"][:] = np.sqrt(ages.sum(axis=1))
-
-
-def _median(rows: Rows, lx: Array, each: NDArray[np.intp]) -> Array:
-    """Where half are left, even between the ends of its group; nan in the open one."""
-    last = lx.shape[1] - 1
-    group = np.count_nonzero(lx[:, 1:] > 0.5, axis=1)
-    inside = np.minimum(group, last - 1)
-    at, after = lx[each, inside], lx[each, inside + 1]
-    starts = np.array(rows.grid.starts, float)
-    found = starts[inside] + rows.n[0, inside] * ((at - 0.5) / (at - after))
-    return np.where(group < last, found, np.nan)
-
-
-def _mode(rows: Rows, dx: Array) -> Array:
-    """The adult group with most deaths a year of age; nan where it is the last closed one."""
-    groups = adult_groups(rows.grid)
-    starts, widths = np.array(rows.grid.starts, float)[groups], rows.n[0, groups]
-    if len(starts) < 3:
-        return np.full(len(dx), np.nan)
-    deaths = dx[:, groups]
-    top = np.argmax(deaths if np.all(widths == 1) else deaths / widths, axis=1)
-    return np.where(top < len(starts) - 1, starts[top], np.nan)
-
-
-def _lost(rows: Rows, ax: Array, dx: Array, ex: Array) -> Array:
-    """e-dagger: d (e(x+n) + (1 - a/n) (e(x) - e(x+n))) summed, and d e of the open group."""
-    count = len(ex)
-    t, left = rows.first[:count], rows.second[:count]
-    np.divide(ax[:, :-1], rows.n[:count], out=t)
-    np.subtract(1, t, out=t)
-    np.subtract(ex[:, :-1], ex[:, 1:], out=left)
-    t *= left
-    t += ex[:, 1:]
-    t *= dx[:, :-1]
-    return np.asarray(t.sum(axis=1) + dx[:, -1] * ex[:, -1])
-
-
-def _both_alive(rows: Rows, ax: Array, lx: Array) -> Array:
-    """Years that two of one table are both alive: l^2 a + l(x+n)^2 (n - a), half of it on top."""
-    count = len(lx)
-    n, t, gone, square = (part[:count] for part in (rows.n, rows.first, rows.second, rows.ages))
-    np.multiply(lx, lx, out=square)
-    np.subtract(n, ax[:, :-1], out=t)
-    t *= square[:, 1:]
-    np.multiply(square[:, :-1], ax[:, :-1], out=gone)
-    t += gone
-    return np.asarray(t.sum(axis=1) + square[:, -1] * ax[:, -1] / 2)
+    numbers["e65"][:] = ex[:, grid.position(65)] if grid.has(65) else np.nan
+    numbers["H"][:] = numbers["edagger"] / e0
+    numbers["gini"][:] = 1 - numbers["gini"] / e0
+    numbers["sd0"][:] = np.sqrt(numbers["sd0"])
+    at, after = (lx[np.arange(len(lx)), group] for group in (below - 1, below))
+    inside = starts[below - 1] + grid.widths[below - 1] * ((at - 0.5) / (at - after))
+    numbers["median"][:] = np.where(below > 0, inside, np.nan)
+    known = (mode < groups.stop - 1) & (groups.stop - groups.start > 2)
+    numbers["mode_raw"][:] = np.where(known, starts[mode], np.nan)

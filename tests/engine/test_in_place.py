@@ -27,8 +27,7 @@ def flags(panel: Panel, settings: Settings = PLAIN) -> np.ndarray:
     rows, ages = panel.deaths.shape
     columns = {name: np.empty((rows, ages)) for name in in_place.COLUMNS}
     numbers = {key: np.empty(rows) for key in bulk.NUMBERS}
-    room = in_place.Rows.of(panel.grid, settings, rows)
-    return in_place.fill(panel, room, columns, numbers)
+    return in_place.fill(panel, settings, columns, numbers)
 
 
 @pytest.mark.parametrize("settings", CHAINS, ids=lambda one: one.key)
