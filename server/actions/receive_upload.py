@@ -43,7 +43,7 @@ def receive_upload(
 
 def taken(files: Sequence[File], *, limit: int) -> list[File]:
     """Files that can be kept, under names that can be shown. Raises: FileTooLarge; Refused."""
-    _require_roles([role for role, _, _ in files])
+    require_roles([role for role, _, _ in files])
     size = sum(len(content) for _, _, content in files)
     if size > limit:
         raise FileTooLarge(
@@ -55,7 +55,8 @@ def taken(files: Sequence[File], *, limit: int) -> list[File]:
     return [(role, _name(name) or f"{role}.csv", content) for role, name, content in files]
 
 
-def _require_roles(roles: list[str]) -> None:
+def require_roles(roles: list[str]) -> None:
+    """Raises: Refused where there is none, one is unknown, or one comes twice."""
     if not roles:
         raise Refused("No file was handed in. Choose a file of deaths and one of population.")
     for role, count in Counter(roles).items():

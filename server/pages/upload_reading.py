@@ -1,62 +1,37 @@
 """How the files of an upload are read, shown for correction, and what is asked about the counts."""
 
-from dataclasses import dataclass, replace
-from typing import ClassVar
+from collections.abc import Mapping as Mapped
+from dataclasses import dataclass, field, replace
+from typing import Any, ClassVar
 
-from server.exports.table import Column, Row, Table
-from server.intake.mapping import Mapping
-from server.intake.reading import Reading, read
-from server.intake.recognising.columns import Recognition, fields_of, recognise
+from server.intake.mapping import LISTS, Mapping
+from server.intake.recognising.look import Before, Looked, Said, look, said_in
+from server.pages.file_reading import FileReading, file_reading, sample
 from server.pages.page import Frame, Page
+from server.pages.reading_questions import Asked, asked, open_errors
 from server.pages.upload import locator
 from server.sentences import reading as say
-from server.sentences.numbers import whole
-from server.sentences.pieces import phrase
+from server.sentences import reading_form as ask
+from server.sentences.pieces import Sentence, phrase
 from server.sentences.text import _
 from server.store import collections, editions, uploads
 from server.store.connect import Session
 from server.store.errors import Refused
-from server.store.records import Basis, Upload, UploadFile
+from server.store.records import Basis, Upload
 
+EARLIER = 5  # editions whose files are tried for what a new one is likely to mean
 UNSTATED = Basis("", "", "", "", "")
 
 
 @dataclass(frozen=True, slots=True)
-class FieldChoice:
-    """One thing a column can hold, and which column is taken for it."""
+class Answers:
+    """What was sent with the form of this page."""
 
-    name: str  # in the form: deaths.year
-    label: str
-    columns: say.Options
-    chosen: str
-    why: str
-
-
-@dataclass(frozen=True, slots=True)
-class FileReading:
-    """One file: its first rows are the table `key` of the page."""
-
-    key: str
-    line: str
-    problems: tuple[str, ...]  # what keeps it from being read at all
-    fields: tuple[FieldChoice, ...]
-    unused: str
-
-
-@dataclass(frozen=True, slots=True)
-class Asked:
-    """What no column says, as far as it is known; the options of what can be chosen."""
-
-    mapping: Mapping
-    area_hint: str
-    sex_codes: tuple[tuple[str, str, str], ...]  # name in the form, label, text in the file
-    delivered: str
-    provisional: str
-    sexes: say.Options
-    basis: Basis
-    people: say.Options
-    dated_by: say.Options
-    population: say.Options
+    files: Mapped[str, Said]  # by role
+    texts: Mapped[str, str]  # all fields as they were sent, by name
+    shared: Mapped[str, Any]  # fields of every file's mapping
+    basis: Basis | None  # None: not all of it is answered
+    errors: Mapped[str, str] = field(default_factory=dict)  # by name, of what was not understood
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -71,18 +46,53 @@ class UploadReadingPage(Page):
     asked: Asked
 
 
-def build(session: Session, upload_id: int) -> UploadReadingPage:
-    upload = uploads.find(session, upload_id)
+def looked_at(session: Session, upload: Upload, answers: Answers | None) -> tuple[Looked, ...]:
+    """Each file as was answered, else as stated before, else as likely. Refused for an edition."""
     _require_draft(upload)
-    looked = [
-        (file, read(uploads.file_bytes(session, upload.id, file.role), file.name))
-        for file in upload.files
-    ]
-    before = _before(session, upload)
-    known = [_known(file, reading, before) for file, reading in looked]
+    found = []
+    for file in upload.files:
+        said = answers.files.get(file.role) if answers else None
+        if said is None and file.mapping:
+            said = said_in(Mapping.from_json(file.mapping), file.role)
+        found.append(
+            look(
+                uploads.file_bytes(session, upload.id, file.role),
+                file.name,
+                file.role,
+                said,
+                () if said else _before(session, upload, file.role),
+            )
+        )
+    return tuple(found)
+
+
+def mappings(looked: tuple[Looked, ...], answers: Answers) -> dict[str, Mapping]:
+    """The mapping of each file, with what holds for all of them."""
+    return {
+        one.role: one.mapping if one.role in LISTS else replace(one.mapping, **answers.shared)
+        for one in looked
+    }
+
+
+def errors_of(looked: tuple[Looked, ...], answers: Answers) -> dict[str, str]:
+    """Every answer that is missing or not understood, by the name of its field."""
+    return {**answers.errors, **open_errors(looked, answers.texts)}
+
+
+def build(
+    session: Session,
+    upload_id: int,
+    looked: tuple[Looked, ...] = (),
+    answers: Answers | None = None,
+    errors: Mapped[str, str] | None = None,
+) -> UploadReadingPage:
+    """As proposed; or as answered, with what is wrong beside each answer."""
+    upload = uploads.find(session, upload_id)
+    looked = looked or looked_at(session, upload, answers)
+    errors = dict(errors or {})
     standing = editions.newest_standing(session, upload.collection)
     collection = collections.find(session, upload.collection)
-    unreadable = [file.name for file, reading in looked if reading.problems]
+    unreadable = [one.reading.name for one in looked if one.reading.problems]
     return UploadReadingPage(
         frame=Frame(
             title=_("How the files are read"),
@@ -91,17 +101,34 @@ def build(session: Session, upload_id: int) -> UploadReadingPage:
             shown=_("Not an edition"),
             nav="upload",
         ),
-        answer=say.unreadable(unreadable) if unreadable else say.answer(len(upload.files)),
-        tables=tuple(_rows(file, reading) for file, reading in looked),
+        answer=_answer(looked, unreadable, errors),
+        tables=tuple(sample(one) for one in looked),
         place=f"/uploads/{upload.id}",
         collection=collection.code,
-        readable=not unreadable,
+        readable=len(unreadable) < len(looked),
         files=tuple(
-            _file(file, reading, mapping)
-            for (file, reading), mapping in zip(looked, known, strict=True)
+            file_reading(file, one, errors) for file, one in zip(upload.files, looked, strict=True)
         ),
-        asked=_asked(known, upload.basis or (standing.basis if standing else UNSTATED)),
+        asked=asked(
+            looked,
+            basis=upload.basis or (standing.basis if standing else UNSTATED),
+            stated=_stated(upload, looked),
+            texts=answers.texts if answers else None,
+            errors=errors,
+        ),
     )
+
+
+def _answer(looked: tuple[Looked, ...], unreadable: list[str], errors: dict[str, str]) -> Sentence:
+    if errors:
+        return phrase(ask.still_open(len(errors)))
+    return say.unreadable(unreadable) if unreadable else say.answer(len(looked))
+
+
+def _stated(upload: Upload, looked: tuple[Looked, ...]) -> Mapping:
+    """What holds for all files, as far as it was stated, for this upload or an earlier one."""
+    own = [Mapping.from_json(file.mapping) for file in upload.files if file.mapping]
+    return (own or [one.mapping for one in looked] or [Mapping()])[0]
 
 
 def _require_draft(upload: Upload) -> None:
@@ -114,93 +141,11 @@ def _require_draft(upload: Upload) -> None:
         )
 
 
-def _before(session: Session, upload: Upload) -> dict[str, Mapping]:
-    """How files of each role were read in the last upload that became an edition."""
-    earlier = uploads.listing(session, upload.collection)
-    last = next((one for one in earlier if one.edition is not None), None)
-    return {file.role: Mapping.from_json(file.mapping) for file in last.files} if last else {}
-
-
-def _known(file: UploadFile, reading: Reading, before: dict[str, Mapping]) -> Mapping:
-    """As stated for this file; else as for the last one, where it has the same columns; else as its
-    headings and values suggest."""
-    if file.mapping:
-        return Mapping.from_json(file.mapping)
-    last = before.get(file.role)
-    if last is not None:
-        columns = {last.column(field) for field in fields_of(file.role)} - {""}
-        if columns <= set(reading.columns):
-            return replace(last, provisional_years=())
-    return recognise(reading, file.role).mapping
-
-
-def _rows(file: UploadFile, reading: Reading) -> Table:
-    """The first rows as they stand in the file."""
-    width = len(reading.columns)
-    rows = [(*row[:width], *[""] * (width - len(row))) for row in reading.rows]
-    return Table(
-        file.role,
-        _("First rows of {file}", file=file.name),
-        tuple(Column(f"column_{at}", name) for at, name in enumerate(reading.columns)),
-        tuple(Row(tuple(row)) for row in rows),
-    )
-
-
-def _file(file: UploadFile, reading: Reading, mapping: Mapping) -> FileReading:
-    found = recognise(reading, file.role)
-    columns = tuple(dict.fromkeys(reading.columns))
-    options = (("", say.not_found()), *((column, column) for column in columns))
-    chosen = {field: mapping.column(field) for field in fields_of(file.role)}
-    return FileReading(
-        key=file.role,
-        line=say.file_line(
-            file.role, file.name, reading.row_count, reading.delimiter_name, reading.encoding
-        ),
-        problems=tuple(problem.sentence(_, whole) for problem in reading.problems),
-        fields=tuple(
-            FieldChoice(
-                name=f"{file.role}.{field}",
-                label=say.field(field),
-                columns=options,
-                chosen=column if column in columns else "",
-                why=_why(found, field, column),
-            )
-            for field, column in chosen.items()
-        ),
-        unused=say.unused(
-            [(one.column, one.why) for one in found.columns if one.column not in chosen.values()]
-        ),
-    )
-
-
-def _why(found: Recognition, field: str, column: str) -> str:
-    """How sure the choice of a column is; empty where none was chosen."""
-    if not column:
-        return ""
-    for one in found.columns:
-        if (one.column, one.field) == (column, field):
-            return say.confidence(one.confidence, one.why)
-    return say.confidence("kept", "")
-
-
-def _asked(known: list[Mapping], basis: Basis) -> Asked:
-    """What no column says is the same for all files of an upload."""
-    mapping = known[0]
-    own = {sex: text for text, sex in mapping.sex_codes}
-    without = any(not (one.area or one.area_name) for one in known)
-    return Asked(
-        mapping=mapping,
-        area_hint=say.area_hint(without=without),
-        sex_codes=(
-            ("code_f", _("Women are written as"), own.get("f", "")),
-            ("code_m", _("Men are written as"), own.get("m", "")),
-            ("code_p", _("Both together are written as"), own.get("p", "")),
-        ),
-        delivered=", ".join(mapping.delivered),
-        provisional=", ".join(mapping.provisional_years),
-        sexes=say.sexes(),
-        basis=basis,
-        people=say.people(),
-        dated_by=say.dated_by(),
-        population=say.population(),
-    )
+def _before(session: Session, upload: Upload, role: str) -> tuple[Before, ...]:
+    """How files of this role were read for the newest editions of the collection."""
+    found = []
+    for earlier in uploads.listing(session, upload.collection):
+        for file in earlier.files:
+            if earlier.edition is not None and file.role == role and file.mapping:
+                found.append(Before(earlier.edition, Mapping.from_json(file.mapping)))
+    return tuple(found[:EARLIER])

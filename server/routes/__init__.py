@@ -6,8 +6,10 @@ from server.routes import (
     curves,
     methods,
     population_year,
+    receiving,
     start,
     trend,
+    upload_reading,
     uploads,
 )
 
@@ -19,5 +21,7 @@ ROUTERS = (
     comparison.router,
     trend.router,
     uploads.router,
+    receiving.router,
+    upload_reading.router,
     methods.router,
 )

@@ -40,3 +40,12 @@ def file(form: FormData, field: str) -> tuple[str, bytes] | None:
     if not isinstance(value, UploadFile) or not value.filename:
         return None
     return value.filename, value.file.read()
+
+
+def files(form: FormData, field: str) -> list[tuple[str, bytes]]:
+    """Name and content of each file of a field that takes several."""
+    return [
+        (value.filename, value.file.read())
+        for value in form.getlist(field)
+        if isinstance(value, UploadFile) and value.filename
+    ]

@@ -10,21 +10,16 @@ from server.accounts.viewer import Right
 from server.actions.check_upload import require_checkable
 from server.actions.commit_upload import commit_upload
 from server.actions.correct_upload import correct_upload
-from server.actions.create_collection import create_collection
 from server.actions.discard_upload import discard_upload
 from server.actions.erase_bytes import erase_bytes
-from server.actions.map_upload import map_upload
 from server.actions.preview_upload import preview_upload
-from server.actions.receive_upload import receive_upload
-from server.intake.mapping import ROLES
 from server.pages import upload as upload_page
-from server.pages import upload_checking, upload_new, upload_problems, upload_reading
+from server.pages import upload_checking, upload_problems
 from server.pages import uploads as uploads_page
 from server.results.preview import asked, taking_of
 from server.routes import plain
 from server.routes.asking import Elsewhere, SessionDep, ViewerDep, needs
 from server.routes.forms import FormDep, file, text
-from server.routes.reading_form import basis, mappings
 from server.store import uploads
 from server.store.errors import Missing
 from server.store.records import Job
@@ -44,69 +39,10 @@ def show_all(request: Request, session: SessionDep) -> Response:
     return render(request, uploads_page.build(session))
 
 
-@router.api_route("/uploads/new", methods=READ, dependencies=MAY_READ)
-def choose(request: Request, session: SessionDep) -> Response:
-    chosen = plain.keys(request, "collection")["collection"]
-    limit = request.app.state.config.upload_limit
-    return render(request, upload_new.build(session, chosen, limit=limit))
-
-
-@router.post("/uploads", dependencies=MAY_UPLOAD)
-def receive(request: Request, session: SessionDep, viewer: ViewerDep, form: FormDep) -> Response:
-    """Keep the files as a draft; a new collection is opened for them first."""
-    files = [(role, *found) for role in ROLES if (found := file(form, role)) is not None]
-    if not files:
-        raise Refusal(
-            422,
-            "Not understood",
-            "No file was chosen. Go back and choose a file of deaths and one of population, or one "
-            "that holds both.",
-        )
-    now = dt.datetime.now(dt.UTC)
-    code = text(form, "collection")
-    if not code:
-        code = create_collection(
-            session,
-            code=text(form, "code"),
-            name=text(form, "name"),
-            owner=text(form, "owner"),
-            by=viewer,
-            now=now,
-        ).code
-    upload = receive_upload(
-        session, collection=code, files=files, by=viewer, now=now, limit=_limit(request)
-    )
-    return redirect(f"/uploads/{upload.id}/reading", status=303)
-
-
 @router.api_route("/uploads/{upload:int}", methods=READ, dependencies=MAY_READ)
 def show(request: Request, session: SessionDep, upload: int) -> Response:
     plain.keys(request)
     return render(request, upload_page.build(session, upload))
-
-
-@router.api_route("/uploads/{upload:int}/reading", methods=READ, dependencies=MAY_READ)
-def show_reading(request: Request, session: SessionDep, upload: int) -> Response:
-    plain.keys(request)
-    return render(request, upload_reading.build(session, upload))
-
-
-@router.post("/uploads/{upload:int}/reading", dependencies=MAY_UPLOAD)
-def correct_reading(
-    request: Request, session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep
-) -> Response:
-    """Fix how the files are read and what the counts are, and check them."""
-    roles = [file.role for file in uploads.find(session, upload).files]
-    texts = {key: value for key, value in form.items() if isinstance(value, str)}
-    map_upload(
-        session,
-        upload_id=upload,
-        mappings=mappings(texts, roles),
-        basis=basis(texts),
-        by=viewer,
-        now=dt.datetime.now(dt.UTC),
-    )
-    return check(request, session, upload)
 
 
 @router.post("/uploads/{upload:int}/check", dependencies=MAY_UPLOAD)

@@ -15,7 +15,9 @@ def role(code: str) -> str:
         "deaths": _("deaths"),
         "population": _("population"),
         "births": _("births"),
-        "rates": _("death rates or probabilities"),
+        "rates": _("death rates or probabilities of dying"),
+        "areas": _("what becomes of area codes"),
+        "breaks": _("breaks of a series"),
     }[code]
 
 
@@ -82,6 +84,13 @@ def confidence(level: str, why: str) -> str:
     }[level]
 
 
+def column_hint(why: str, values: tuple[str, ...]) -> str:
+    """Beside a column: how sure it is, and some of its values."""
+    if not values:
+        return why
+    return _("{why}; {values}", why=why, values=", ".join(values))
+
+
 def not_found() -> str:
     return _("no column found")
 
@@ -120,6 +129,7 @@ def population() -> Options:
         ("", _("choose")),
         ("midyear", _("people in the middle of the year")),
         ("person_years", _("person-years lived in the year")),
+        ("january", _("people on 1 January, averaged with those a year later")),
     )
 
 

@@ -119,6 +119,27 @@ def set_mapping(
     return find(session, upload_id)
 
 
+def set_roles(session: Session, upload_id: int, *, roles: Mapping[str, str]) -> Upload:
+    """Other roles for files of a draft, by their old ones. A file that moves loses its mapping, and
+    the report of an earlier reading is dropped. Raises: Missing; Refused for an edition."""
+    upload = _draft(session, upload_id)
+    moved = {old: new for old, new in roles.items() if old != new}
+    for role in moved:
+        if role not in {file.role for file in upload.files}:
+            raise Missing("file", role, [file.role for file in upload.files])
+    for before, after in (
+        *((old, f"{old} moved") for old in moved),  # out of the way, since roles may be exchanged
+        *((f"{old} moved", new) for old, new in moved.items()),
+    ):
+        session.execute(
+            update(FileRow)
+            .where(FileRow.upload_id == upload_id, FileRow.role == before)
+            .values(role=after, mapping="")
+        )
+    _set(session, upload_id, report="", reader="", base=None)
+    return find(session, upload_id)
+
+
 def set_report(session: Session, upload_id: int, *, report: str, reader: str, base: int) -> Upload:
     """What the checks found (JSON), the version of the reader, and the number of the edition that
     stood then (0: none). Raises: Missing; Refused for an upload that has become an edition."""

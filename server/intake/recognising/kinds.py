@@ -1,5 +1,6 @@
 """What kind of file it is: the role it plays in an upload, told by what it holds."""
 
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
 from server.intake.lists import NEEDED, field_of
@@ -22,6 +23,12 @@ class Kind:
     sheet: str = ""  # the one that holds it, of a workbook with sheets of several kinds
 
 
+@dataclass(frozen=True, slots=True)
+class Sorted:
+    files: tuple[tuple[str, str, bytes], ...]  # role, name, content
+    twice: tuple[tuple[str, str], ...] = ()  # a role and the name of one more file that has it
+
+
 def kinds(content: bytes, name: str) -> tuple[Kind, ...]:
     """What a file holds; several where the sheets of a workbook play different roles, each once.
 
@@ -35,6 +42,27 @@ def kinds(content: bytes, name: str) -> tuple[Kind, ...]:
         if len(told) > 1 and len({part.role for part, _ in told}) == len(told):
             return tuple(Kind(part.role, part.why, sheet) for part, sheet in told)
     return (kind(first),)
+
+
+def sorted_out(files: Sequence[tuple[str, bytes]], taken: Iterable[str] = ()) -> Sorted:
+    """Each file by what it holds. A file that does not tell takes a place that is left, deaths
+    first; which it is, is then asked."""
+    placed: list[tuple[str, str, bytes]] = []
+    free = [role for role in ("deaths", "population", "counts", "births") if role not in taken]
+    untold, twice = [], []
+    for name, content in files:
+        for found in kinds(content, name):
+            if not found.role:
+                untold.append((name, content))
+            elif found.role in {*taken, *(role for role, _, _ in placed)}:
+                twice.append((found.role, name))
+            else:
+                placed.append((found.role, name, content))
+    told = {role for role, _, _ in placed}
+    left = [role for role in free if role not in told]
+    placed += [(role, *file) for role, file in zip(left, untold, strict=False)]
+    twice += [(left[-1] if left else "", name) for name, _ in untold[len(left) :]]
+    return Sorted(tuple(placed), tuple(twice))
 
 
 def kind(reading: Reading) -> Kind:

@@ -1,6 +1,7 @@
 """One file looked at: what is proposed for it, what was said about it, and what is still open."""
 
 from collections.abc import Mapping as Mapped
+from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 
 from server.intake.forms.units import suggested
@@ -15,6 +16,7 @@ from server.intake.recognising.columns import (
     stands,
     ways,
 )
+from server.intake.recognising.kinds import kind
 from server.intake.recognising.marks import Marks, marks
 from server.intake.recognising.noticing import Noticed, notice
 
@@ -26,6 +28,7 @@ CUT = ("encoding", "delimiter", "sheet")  # of a form: with another of these all
 class Said:
     """What was answered about a file, as far as it was."""
 
+    kind: str = ""  # what it holds; empty: not answered
     form: Form | None = None  # but for what stands across; None: nothing was said yet
     shown: Form | None = None  # the form in which the file was shown when this was said
     marks: bool = True  # how numbers are written was answered
@@ -56,21 +59,26 @@ class Looked:
     ways: tuple[Across, ...] = ()
     noticed: Noticed = NOTHING
     marks: Marks = PLAIN
+    numbers: tuple[str, ...] = ()  # those that the file holds under this mapping
     units: tuple[tuple[str, str], ...] = ()  # numbers whose unit is asked, and the one proposed
-    open: tuple[str, ...] = ()  # questions without an answer: marks, units, sexes, number, rate_is
+    # questions without an answer: kind, marks, units, sexes, number, rate_is
+    open: tuple[str, ...] = ()
     changed: bool = False  # what was said made another table of it: its columns want a look
     before: Before | None = None  # whose mapping was taken over
     lost: tuple[tuple[str, str], ...] = ()  # of the earlier mapping: fields whose columns are gone
 
 
 def look(
-    content: bytes, name: str, role: str, said: Said | None = None, before: Before | None = None
+    content: bytes,
+    name: str,
+    role: str,
+    said: Said | None = None,
+    before: Sequence[Before] = (),
 ) -> Looked:
-    """Read a file as was said, else as before, else as is likely. Never raises for its content."""
+    """Read a file as was said, else as one of the earlier ones, newest first, whose columns it has,
+    else as is likely. Never raises for its content."""
     if said is None or said.form is None:
-        if before is not None and role not in LISTS:
-            return _as_before(content, name, role, before)
-        return _recognised(proposed(content, name, Form()), role)
+        return _first(content, name, role, before)
     shown = said.shown or said.form
     if any(getattr(said.form, part) != getattr(shown, part) for part in CUT):
         stated = Form(**{part: getattr(said.form, part) for part in CUT})
@@ -81,6 +89,9 @@ def look(
         return replace(_recognised(reading, role), changed=True)
     if role not in LISTS and said.wide is not None and said.wide != shown.across:
         return replace(_recognised(reading, role, said.wide), changed=True)
+    if reading.sheets:  # which of its numbers are texts only a reading that proposes tells
+        asked = proposed(content, name, Form(sheet=said.form.sheet)).questions
+        reading = replace(reading, questions=asked)
     return _looked(reading, role, _mapped(reading, role, said), said)
 
 
@@ -92,32 +103,56 @@ def _recognised(reading: Reading, role: str, wide: tuple[str, ...] | None = None
     return _looked(reading, role, found.mapping, None)
 
 
-def _as_before(content: bytes, name: str, role: str, before: Before) -> Looked:
-    """As an earlier file of the role was read, where this one has the columns for it."""
-    kept = before.mapping
-    reading = proposed(content, name, Form())
-    if kept.form.sheet in {tab.name for tab in reading.sheets}:
-        reading = proposed(content, name, Form(sheet=kept.form.sheet))
-    likely = _recognised(reading, role)
+def _first(content: bytes, name: str, role: str, before: Sequence[Before]) -> Looked:
+    """As the newest earlier file that fits was read; where none does, as is likely, and what the
+    newest one had that this one lacks."""
+    if not before or role in LISTS:
+        return _recognised(proposed(content, name, Form()), role)
+    first = proposed(content, name, Form())
+    lost = []
+    for earlier in before:
+        sheet, reading = earlier.mapping.form.sheet, first
+        if sheet != first.form.sheet and sheet in {tab.name for tab in first.sheets}:
+            reading = proposed(content, name, Form(sheet=sheet))
+        missing = _missing(reading, role, earlier.mapping)
+        if not missing and not reading.problems:
+            return replace(_as_before(reading, role, earlier.mapping), before=earlier)
+        lost.append(missing)
+    return replace(_recognised(first, role), before=before[0], lost=lost[0])
+
+
+def _missing(reading: Reading, role: str, kept: Mapping) -> tuple[tuple[str, str], ...]:
+    """Fields of an earlier mapping whose columns, or whose headings across, are not there."""
     lost = [
         (of, column)
         for of in COLUMNS
         if (column := kept.column(of)) and column not in reading.columns
     ]
-    way = stands(reading, role, kept.form.across) if kept.form.across else Across((), ())
-    if kept.form.across and not way.columns:
+    if kept.form.across and not stands(reading, role, kept.form.across).columns:
         lost += [(of, "") for of in kept.form.across]
-    if lost or reading.problems:
-        return replace(likely, before=before, lost=tuple(lost))
-    form = replace(
-        likely.mapping.form,
-        across=way.fields,
-        across_columns=way.columns,
-        across_number=kept.form.across_number,
-    )
+    return tuple(lost)
+
+
+def _as_before(reading: Reading, role: str, kept: Mapping) -> Looked:
+    """The earlier mapping on this file: its headings across and its marks are looked at anew."""
+    likely = recognise(reading, role, kept.form.across)
+    form = replace(likely.mapping.form, across_number=kept.form.across_number)
     mapping = replace(kept, form=form, provisional_years=())
-    looked = _looked(reading, role, mapping, Said(marks=likely.marks.sure))
-    return replace(looked, before=before)
+    return _looked(reading, role, mapping, None)
+
+
+def said_in(mapping: Mapping, role: str) -> Said:
+    """What a mapping that was stated before says."""
+    return Said(
+        kind=role,
+        form=mapping.form,
+        columns={of: mapping.column(of) for of in COLUMNS},
+        wide=mapping.form.across,
+        across_number=mapping.form.across_number,
+        units=mapping.units,
+        rate_is=mapping.rate_is,
+        sex_codes=mapping.sex_codes,
+    )
 
 
 def _mapped(reading: Reading, role: str, said: Said) -> Mapping:
@@ -144,23 +179,21 @@ def _looked(reading: Reading, role: str, mapping: Mapping, said: Said | None) ->
     if role in LISTS or reading.problems:
         return Looked(role, reading, mapping, ())
     numbers = _numbers(mapping, role)
-    found = marks(
-        text
-        for columns in numbers.values()
-        for column in columns
-        if column in reading.columns
-        for text in reading.distinct(column)
-    )
+    found = _marks(reading, numbers)
     if said is None:
         form = replace(mapping.form, decimal=found.decimal, thousands=found.thousands)
         mapping = replace(mapping, form=form)
     noticed = notice(reading, mapping)
     units = _units(reading, numbers)
+    told = {number for number, _ in units}
+    stated = tuple(unit for unit in mapping.units if unit[0] in told or unit[1] != "1")
+    mapping = replace(mapping, units=stated)
     answered = dict(mapping.sex_codes)
     missing = {
+        "kind": not (kind(reading).role or (said and said.kind)),
         "marks": not (found.sure if said is None else said.marks),
         "number": bool(mapping.form.across) and "" in numbers,
-        "units": bool({number for number, _ in units} - {number for number, _ in mapping.units}),
+        "units": bool(told - {number for number, _ in stated}),
         "rate_is": "rate" in numbers and not mapping.rate_is,
         "sexes": any(text not in answered for text, _ in noticed.sexes),
     }
@@ -172,14 +205,31 @@ def _looked(reading: Reading, role: str, mapping: Mapping, said: Said | None) ->
         ways=ways(reading),
         noticed=noticed,
         marks=found,
+        numbers=tuple(number for number in numbers if number),
         units=units,
         open=tuple(question for question, is_open in missing.items() if is_open),
     )
 
 
+def _marks(reading: Reading, numbers: dict[str, tuple[str, ...]]) -> Marks:
+    """How numbers are written, by all texts of their columns; of a workbook by what was asked."""
+    if reading.sheets:
+        asked = next((one for one in reading.questions if one.key == "decimal"), None)
+        if asked is None:
+            return PLAIN
+        thousands, example = asked.values["thousands"], asked.values["example"]
+        return Marks(asked.proposal, thousands, sure=asked.likely, example=example)
+    columns = [column for each in numbers.values() for column in each]
+    return marks(
+        text for column in columns if column in reading.columns for text in reading.distinct(column)
+    )
+
+
 def _numbers(mapping: Mapping, role: str) -> dict[str, tuple[str, ...]]:
     """The columns in which each number stands; "" for cells that nothing says the count of."""
-    found = {number: (column,) for number in numbers_of(role) if (column := mapping.column(number))}
+    found: dict[str, tuple[str, ...]] = {
+        number: (column,) for number in numbers_of(role) if (column := mapping.column(number))
+    }
     form = mapping.form
     place = form.across.index("number") + 1 if "number" in form.across else 0
     for row in form.across_columns:

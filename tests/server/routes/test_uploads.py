@@ -238,8 +238,8 @@ def test_a_file_that_is_too_large_is_refused(sqlite_url: str) -> None:
 @pytest.mark.parametrize(
     ("changes", "words"),
     [
-        ({"people": "", "source": ""}, "whose deaths are counted, where the counts come from"),
-        ({"dated_by": "burial"}, "what decides the year of a death"),
+        ({"people": "", "source": ""}, "To be answered: whose deaths are counted."),
+        ({"dated_by": "burial"}, "To be answered: what decides the year of a death."),
         ({"provisional": "2001, last year"}, "hold “last year”"),
     ],
 )
