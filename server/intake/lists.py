@@ -6,7 +6,7 @@ Their columns are known by their headings alone; nothing is asked about them.
 import csv
 import io
 import re
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -93,6 +93,19 @@ def small_table(file: Layout, role: str) -> SmallTable:
         lines=tuple(lines),
         row_count=file.row_count,
     )
+
+
+def written(role: str, rows: Iterable[Mapping[str, str]]) -> bytes:
+    """A small table as a file, from the texts of its fields.
+
+    >>> written("breaks", [{"year": "2012", "kind": "population"}]).decode().splitlines()
+    ['area,year,kind,cause,note,ratio,ratio_error', ',2012,population,,,,']
+    """
+    text = io.StringIO(newline="")
+    writer = csv.DictWriter(text, list(HEADINGS[role]), restval="", lineterminator="\n")
+    writer.writeheader()
+    writer.writerows(rows)
+    return text.getvalue().encode()
 
 
 def field_of(heading: str, role: str) -> str:

@@ -56,9 +56,33 @@ def _births() -> str:
     )
 
 
+_AREAS = _csv(
+    "code,becomes,from,to,share,counts,sex,age,name,parent",
+    [
+        ("fenwold", "lowland", "", "", "", "", "", "", "Lowland", ""),
+        ("marsh", "lowland", "", "", "", "", "", "", "", ""),
+        ("moor", "upland", "", "2013", 0.25, "", "", "", "Upland", ""),
+        ("moor", "vale", "", "2013", 0.75, "", "", "", "Vale", ""),
+        ("isle", "north-isle", "2014", "", "", "", "", "", "North Isle", ""),
+        ("isle", "south-isle", "2014", "", "", "", "", "", "South Isle", ""),
+    ],
+)
+_BREAKS = _csv(
+    "area,year,kind,cause,note,ratio,ratio_error",
+    [
+        ("", 2012, "population", "", "after the census of 2011", "", ""),
+        ("fenwold", 2014, "boundary", "", "parish of Reed joined", "", ""),
+        ("", 2015, "coding", "", "new revision of the list of causes", 1.02, 0.004),
+        ("", 2015, "shock", "", "hard winter", "", ""),
+    ],
+)
+
+
 # role of the file and its text; the name is the role with .csv
 TEMPLATES: dict[str, str] = {
     "deaths": _deaths(),
     "population": _population(),
     "births": _births(),
+    "areas": _AREAS,
+    "breaks": _BREAKS,
 }

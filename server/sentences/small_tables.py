@@ -1,0 +1,82 @@
+"""What is asked about areas over time and about breaks."""
+
+from server.sentences.breaks import kind
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.reading import Options
+from server.sentences.text import _
+from server.store.breaks import NONE
+from server.store.records import BREAKS
+
+
+def field(role: str, name: str, line: int) -> str:
+    """The label of a field of a line."""
+    if role == "areas":
+        labels = {
+            "code": _("Old code {line}", line=line),
+            "becomes": _("becomes the code"),
+            "from": _("from the year"),
+            "to": _("to the year"),
+            "share": _("with the share"),
+            "name": _("under the name"),
+        }
+    else:
+        labels = {
+            "year": _("First year {line}", line=line),
+            "kind": _("what changed"),
+            "area": _("in the area"),
+            "note": _("Why, in a few words"),
+        }
+    return labels[name]
+
+
+def hint(name: str) -> str:
+    """What an empty field means."""
+    return {
+        "from": _("empty: from the first year"),
+        "to": _("empty: to the last year"),
+        "share": _("empty: all of it; else 0.25 or 1/4"),
+        "area": _("its code; empty: every area"),
+    }.get(name, "")
+
+
+def kinds() -> Options:
+    return (
+        ("", _("nothing")),
+        *((code, kind(code)) for code in BREAKS),
+        (NONE, _("the break of that year falls away")),
+    )
+
+
+def about_areas() -> Sentence:
+    return phrase(
+        _(
+            "Several old codes that become one are added up, exactly, in every year the line names,"
+            " those that stand included. One old code that becomes several needs a share for each;"
+            " the counts are then marked as estimated. Without shares, and with a first year, the"
+            " old series ends there and new ones begin. More lines: {template}."
+        ),
+        template=Piece("areas.csv", "/templates/areas.csv"),
+    )
+
+
+def about_breaks() -> Sentence:
+    return phrase(
+        _(
+            "A break is a change of boundaries, coding, definition or population base that no trend"
+            " crosses; the year is the first of the new kind. A year of shock is drawn, but no"
+            " change is measured from it or to it. More lines: {template}."
+        ),
+        template=Piece("breaks.csv", "/templates/breaks.csv"),
+    )
+
+
+def about_rebase() -> Sentence:
+    """The plain offer of a new population alone."""
+    return phrase(
+        _(
+            "{rebase} After a census hand in the population alone. The deaths that stand stay as"
+            " they are, with their status; name the new estimate under the basis, and both"
+            " editions keep their own."
+        ),
+        rebase=Piece(_("New population for years already held:"), emphasis="strong"),
+    )
