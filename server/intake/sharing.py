@@ -80,14 +80,14 @@ class Settled:
 def settle(ledger: Ledger) -> Settled:
     """Share out, or leave out, what does not state its sex, age or area. Sums are kept to the last
     millionth; where everything is stated, nothing changes."""
-    if not ledger.ageless and all(ledger.states(block.place).all() for block in ledger.blocks):
+    placed: list[Block | Aside] = [*ledger.blocks, *ledger.age_totals]
+    if not ledger.ageless and all(ledger.states(one.place).all() for one in placed):
         return Settled(ledger, ledger)
     blocks: list[Block] = []
     found: list[Part] = []
     lost: list[Part] = []
     account: list[Unstated] = []
-    sources: list[Block | Aside] = [*ledger.blocks, *ledger.ageless]
-    for measure in dict.fromkeys(source.measure for source in sources):
+    for measure in dict.fromkeys(one.measure for one in (*placed, *ledger.ageless)):
         pool = Pool.of([b.pick(ledger.states(b.place)) for b in ledger.of(measure)])
         parts = unstated(ledger, measure, pool)
         made = _shared_out(ledger, pool, parts)
@@ -125,7 +125,7 @@ def _parts(
     """The lines of a source that lack something, those together that lack the same."""
     grid = source.grid if isinstance(source, Block) else ALL_AGES
     area, sex, year = parts_of(source.place)
-    units = in_units(source.values).reshape(len(area), -1)
+    units = in_units(source.values.reshape(len(area), len(grid)))
     nowhere, sexless = area == len(ledger.codes), sex == SEX_UNSTATED
     _, sexes, years = parts_of(pool.place)
     persons = nowhere & (sex == PERSONS)
