@@ -82,7 +82,7 @@ def rated(ledger: Ledger, *, parts: bool = False) -> Iterator[Rated]:
     for pair in ledger.pairs:
         deaths, people = pair.deaths.regroup(pair.grid), pair.people.regroup(pair.grid)
         if parts:
-            keep = _single(ledger, deaths.place)
+            keep = unsummed(ledger, deaths.place)
             if not keep.all():
                 deaths, people = deaths.pick(keep), people.pick(keep)
         if len(deaths.place):
@@ -91,6 +91,8 @@ def rated(ledger: Ledger, *, parts: bool = False) -> Iterator[Rated]:
             yield Rated(pair.grid, deaths.place, deaths.values, people.values, lines, deaths, years)
 
 
-def _single(ledger: Ledger, place: Ints) -> Flags:
+def unsummed(ledger: Ledger, place: Ints) -> Flags:
+    """Places that are no sum of others: not the whole, nor persons where women and men are."""
     area, sex, _ = parts_of(place)
-    return np.asarray((area != ledger.whole) & (sex != SEXES.index("p")))
+    persons = sex == SEXES.index("p")
+    return np.asarray((area != ledger.whole) & ~(persons & (~persons).any()))

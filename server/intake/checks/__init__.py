@@ -7,6 +7,7 @@ from types import ModuleType
 from server.intake.checks import (
     ages,
     areas,
+    basis,
     breaks,
     columns,
     completeness,
@@ -55,7 +56,7 @@ CHAPTERS = (
         "sums",
         "What belongs together",
         "Do deaths, populations and totals stand beside one another as they must?",
-        (series, totals, unstated, worked_out, plausibility),
+        (series, totals, unstated, worked_out, plausibility, basis),
     ),
     Chapter(
         "years",

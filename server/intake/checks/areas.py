@@ -4,6 +4,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 from server.intake.checks.check import Check
+from server.intake.labels import is_total
 from server.intake.problems import Fault
 
 
@@ -34,6 +35,14 @@ def _unknown_delivered(said: Said) -> Iterator[Fault]:
             yield Fault(values={"area": code, "codes": ", ".join(said.codes)[:200]})
 
 
+def _total_among_areas(said: Said) -> Iterator[Fault]:
+    for code in said.codes:
+        words = (code.replace("-", " "), *said.names.get(code, ()))
+        if len(said.codes) > 1 and code not in said.wholes and any(map(is_total, words)):
+            others = [other for other in said.codes if other != code]
+            yield Fault(values={"area": code, "codes": ", ".join(others)[:200]})
+
+
 CHECKS: tuple[Check[Said], ...] = (
     Check(
         key="area_names_differ",
@@ -61,5 +70,16 @@ CHECKS: tuple[Check[Said], ...] = (
         expected="one of the areas {codes}",
         remedy="Correct the mapping.",
         find=_unknown_delivered,
+    ),
+    Check(
+        key="total_among_areas",
+        severity="error",
+        meaning="An area is called a total of all areas, and nothing says that it is the whole. "
+        "Its counts would stand beside those of its parts as if they were others.",
+        found="{area} among {codes}",
+        expected="a total to be named as the whole area",
+        remedy="Say in the mapping that {area} is the whole, of which the others are parts; or "
+        "take its rows out.",
+        find=_total_among_areas,
     ),
 )

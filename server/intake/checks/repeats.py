@@ -11,14 +11,13 @@ from dataclasses import dataclass
 import numpy as np
 
 from engine.ages import Array
-from engine.panel import SEXES
-from server.intake.cells import YEARS, Flags, Ints, parts_of
+from server.intake.cells import YEARS, Flags, Ints
 from server.intake.checks.check import Check
 from server.intake.checks.series import years_worded
 from server.intake.courses import courses
 from server.intake.ledger import Ledger
 from server.intake.problems import Fault, Value
-from server.intake.rated import rated
+from server.intake.rated import rated, unsummed
 from server.intake.schedules import Block
 
 AIM = np.log(1e4)
@@ -133,17 +132,9 @@ def _copied(ledger: Ledger) -> Iterator[Fault]:
     """Ages in a row whose numbers stand in another area, sex or year as well."""
     for measure in MEASURES:
         for block in ledger.of(measure):
-            lines = np.flatnonzero(_parts(ledger, block))
+            lines = np.flatnonzero(unsummed(ledger, block.place))
             if len(lines) > 1 and len(block.grid) >= WINDOWS[0]:
                 yield from _copies(ledger, block, lines)
-
-
-def _parts(ledger: Ledger, block: Block) -> Flags:
-    """Lines that are no sums of others."""
-    area, sex, _ = parts_of(block.place)
-    persons = SEXES.index("p")
-    summed = (sex == persons) & (sex != persons).any()
-    return np.asarray((area != ledger.whole) & ~summed)
 
 
 def _copies(ledger: Ledger, block: Block, lines: Ints) -> Iterator[Fault]:
