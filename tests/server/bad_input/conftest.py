@@ -27,7 +27,7 @@ LIMIT = 1_000_000
 EDITION = "/c/saltmarsh/1"
 CHOICES = "&figures=released&settings=almanac-1"
 GOOD = f"{EDITION}/population-year?of=north.f.2001{CHOICES}"
-DRAFTS = {"upload", "upload_file"}  # a draft with faults is kept, so that it can be corrected
+DRAFTS = {"upload", "upload_file", "job"}  # a draft with faults is kept, and was checked
 PROBLEM = "application/problem+json"
 
 
