@@ -39,6 +39,7 @@ def _persons(extra: int) -> list[dict[str, object]]:
 
 WHOLE = rows(("isle",), times=2)
 ONE = OLDEST[:1]
+BY_NAME = {"area": "", "area_name": "area"}
 UNKNOWN_SEX = [{**row, "sex": "not stated", "deaths": 1, "population": 0} for row in WOMEN]
 UNKNOWN_AGE = [{**WOMEN[0], "age": "not stated", "deaths": 9, "population": 0}]
 UNKNOWN_AREA = [{**row, "area": "not stated", "deaths": 1, "population": 0} for row in WOMEN]
@@ -61,6 +62,7 @@ CASES = (
         lambda: [deaths(SOUND, whole="isle"), population(SOUND, whole="island")],
     ),
     Case("unknown_delivered", _mapped(delivered=("isle",))),
+    Case("total_among_areas", lambda: [counts(SOUND + rows(("All areas",), times=2), **BY_NAME)]),
     Case("unreadable_year", _set(WOMEN, year="12")),
     Case("unknown_sex", _set(WOMEN, sex="F/M")),
     Case("unreadable_age", _set(ONE, age="the oldest")),
