@@ -63,8 +63,8 @@ STATUSES = {
 
 # words that say what a label is about and not which
 ABOUT = (
-    "age|ages|aged|sex|sexes|gender|area|areas|region|regions|district|districts|province|provinces|"
-    "county|counties|country|residence|place|alter|altersgruppe|"
+    "age|ages|aged|sex|sexes|gender|area|areas|region|regions|district|districts|provinces|counties|"
+    "residence|place|alter|altersgruppe|"
     "geschlecht|gebiet|wohnort|sexe|lieu|zone|edad|sexo|lugar|idade|eta|sesso|leeftijd|geslacht|"
     "alder|kon|kjonn|bopael|bosted|wiek|plec|miejsce|group|groups|grupo|gruppe|groupe"
 )
