@@ -35,6 +35,7 @@ class Column:
     signed: bool = False  # a difference: print the plus sign
     under: str = ""  # low and high limits: key of the column under whose number they are printed
     span: str = ""  # printed heading over neighbouring columns that share it
+    counted: bool = False  # numbers as they were handed in, not worked out from others
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,6 +48,8 @@ class Row:
     href: str = ""
     shown: str = ""  # printed in place of the first cell: the name behind a code
     decimals: int | None = None  # where every row is in a unit of its own: instead of the column's
+    estimated: bool = False  # its numbers rest on estimates; not those of `counted` columns
+    marks: tuple[str, ...] = ()  # status of each cell, where it is not that of the row
 
 
 @dataclass(frozen=True, slots=True)

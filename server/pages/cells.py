@@ -8,6 +8,7 @@ from engine.estimates import Estimate, Reason
 from engine.indicators import Unit
 from engine.settings import Settings
 from server.exports.table import Cell, Column, Gap, GapKind
+from server.sentences import reasons
 from server.sentences.reasons import reason
 from server.sentences.text import _
 
@@ -27,15 +28,27 @@ def gap(code: int, settings: Settings) -> Gap:
     return Gap(_KINDS.get(Reason(code), GapKind.UNDEFINED), reason(code, settings))
 
 
+def withheld() -> Gap:
+    """The gap that stands for a withheld count, and for what is worked out from it alone."""
+    return Gap(GapKind.WITHHELD, reasons.withheld())
+
+
 def triple(estimate: Estimate, unit: Unit, settings: Settings) -> Triple:
     """An estimate without batch axes; limits that are missing give the reason."""
     missing = gap(int(estimate.reason), settings)
     return Triple(
         *(
-            unit.scale * float(part) if np.isfinite(part) else missing
+            _scaled(float(part), unit) if np.isfinite(part) else missing
             for part in (estimate.value, estimate.low, estimate.high)
         )
     )
+
+
+def _scaled(value: float, unit: Unit) -> float:
+    """A figure in the printed unit; one that was given to its decimals has no others."""
+    scaled = unit.scale * value
+    short = round(scaled, unit.decimals)
+    return short if abs(scaled - short) < 1e-11 * max(1.0, abs(scaled)) else scaled
 
 
 def columns(

@@ -17,6 +17,8 @@ from server.pages import population_year_rates as rates
 from server.pages import population_year_tables as tables
 from server.pages.choices import Choice, choice
 from server.pages.page import Caution, Frame, Page
+from server.pages.withholding import caution, charts_given, tables_given
+from server.results.loading import Loaded
 from server.results.population_year import Findings, population_year
 from server.results.questions import (
     ComparisonQuestion,
@@ -26,7 +28,7 @@ from server.results.questions import (
     TrendQuestion,
     address,
 )
-from server.sentences import basis, breaks, names
+from server.sentences import basis, breaks, names, sharing
 from server.sentences import curves as curves_say
 from server.sentences import models as models_say
 from server.sentences import population_year as say
@@ -83,17 +85,23 @@ def build(
         implied=_implied(found),
         about_table=say.about_table(found.chain.table.grid.open_age, modelled=found.chain.modelled),
         rows=_rows(found),
-        computed=basis.computed(found.settings),
+        computed=_computed(found),
         basis=(*frames.basis(heading.edition.basis), *_births(found)),
         further=_further(found),
         choice=choice(heading, found.holdings, question),
     )
 
 
+def _computed(found: Findings) -> tuple[Sentence, ...]:
+    shared_out = sharing.computed(found.loaded.panel)
+    return (*basis.computed(found.settings), *([shared_out] if shared_out else []))
+
+
 def _charts(found: Findings, source: str) -> tuple[Chart, ...]:
     """In the order of the page; a picture that would be empty is left out."""
     made = (living.survivors, living.deaths, rates.rates, rates.rise, rates.gain)
-    return tuple(chart for chart in (draw(found, source) for draw in made) if chart is not None)
+    drawn = (draw(found, source) for draw in made)
+    return charts_given((chart for chart in drawn if chart is not None), *_sides(found))
 
 
 def _tables(found: Findings) -> tuple[Table, ...]:
@@ -102,12 +110,17 @@ def _tables(found: Findings) -> tuple[Table, ...]:
         made += [tables.gains(found), models.avoidable(found)]
     implied = models.implied(found)
     made += [implied] if implied else []
-    return tuple(table for table in made if table.rows)
+    return tables_given((table for table in made if table.rows), *_sides(found))
+
+
+def _sides(found: Findings) -> tuple[Loaded | None, Loaded | None]:
+    return found.loaded, found.before.loaded if found.before else None
 
 
 def _avoid(found: Findings) -> Sentence:
     of, labels = found.avoidable, found.loaded.panel.grid.labels
-    fewer = np.where(found.loaded.panel.deaths >= FEW_DEATHS, of.deaths, np.nan)
+    enough = (found.loaded.panel.deaths >= FEW_DEATHS) & ~found.withheld
+    fewer = np.where(enough, of.deaths, np.nan)
     if not found.gainful or not np.isfinite(fewer).any():
         return ()
     at = int(np.nanargmin(fewer))
@@ -181,6 +194,7 @@ def _cautions(found: Findings) -> tuple[Caution, ...]:
         provisional.append(before.period)
     return frames.cautions(
         beside=[
+            caution(*_sides(found)),
             basis.provisional(provisional),
             breaks.mixed(
                 found.holdings.mixed(found.of, found.settings.years),

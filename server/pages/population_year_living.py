@@ -25,6 +25,7 @@ def survivors(found: Findings, source: str) -> Chart | None:
     table, (_low, top) = found.chain.table, axis(found)
     starts = np.array(table.grid.starts, float)
     lx = np.where(starts <= top, table.lx, np.nan)
+    drawn = (starts <= top) & ~found.withheld_of_table
     reach = {
         age: float(table.lx[table.grid.position(age)]) for age in (65, 85) if table.grid.has(age)
     }
@@ -52,8 +53,8 @@ def survivors(found: Findings, source: str) -> Chart | None:
         series=(
             Series(
                 who(found),
-                places(starts[starts <= top]),
-                values(RADIX * lx[starts <= top]),
+                places(starts[drawn]),
+                values(RADIX * lx[drawn]),
                 sex=found.of.sex,  # type: ignore[arg-type]
                 at=At(48, RADIX * (at_age(table.grid, lx, 48) - 0.12), side="right"),
             ),
@@ -74,7 +75,7 @@ def deaths(found: Findings, source: str) -> Chart | None:
     if not found.readable:
         return None
     grid = found.chain.table.grid
-    density = RADIX * found.chain.table.dx[:-1] / grid.widths[:-1]
+    density = shown(found, RADIX * found.chain.table.dx[:-1] / grid.widths[:-1])
     highest = float(np.nanmax(density)) if np.isfinite(density).any() else 1.0
     return Chart(
         key="deaths",
@@ -108,6 +109,8 @@ def _deaths_unit(found: Findings) -> str:
         else _("Deaths per year of age in each age group, of 100,000 born")
     )
     last = RADIX * float(found.chain.table.dx[-1])
+    if found.withheld_of_table[-1]:
+        return beyond(found, text, _("number"))
     return beyond(found, text, whole(last) if math.isfinite(last) else "")
 
 
@@ -121,6 +124,11 @@ def beyond(found: Findings, text: str, last: str) -> str:
     return _(
         "{text}; the {amount} at {age} and over are not drawn", text=text, amount=last, age=age
     )
+
+
+def shown(found: Findings, column: Array) -> Array:
+    """A column of the closed groups without those whose deaths are withheld."""
+    return np.where(found.withheld_of_table[: len(column)], np.nan, column)
 
 
 def columns(found: Findings, density: Array) -> tuple[Series, ...]:
@@ -148,7 +156,11 @@ def _marks(found: Findings) -> Iterable[Mark]:
 
 def _first_year(grid: AgeGrid, density: Array, highest: float) -> tuple[Note, ...]:
     """The first year's bar is named where its neighbours are too low to show."""
-    below = [float(d) for start, d in zip(grid.starts, density, strict=False) if 0 < start < 40]
+    below = [
+        float(d)
+        for start, d in zip(grid.starts, density, strict=False)
+        if 0 < start < 40 and math.isfinite(d)
+    ]
     if grid.starts[1:2] != (1,) or not density[0] > 3 * max(below, default=0):
         return ()
     text = _("{count} in the first year", count=whole(float(density[0])))

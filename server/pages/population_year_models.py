@@ -3,7 +3,7 @@
 from engine.estimates import Estimate
 from engine.indicators import find
 from server.exports.table import Column, Gap, Row, Table
-from server.pages.cells import columns, count, number, triple
+from server.pages.cells import columns, count, number, triple, withheld
 from server.results.models import MOVED
 from server.results.population_year import Findings
 from server.sentences import models as say
@@ -42,12 +42,18 @@ def avoidable(found: Findings) -> Table:
     of, grid = found.avoidable, found.loaded.panel.grid
     out_of_reach = say.out_of_reach()
     rows = tuple(
-        Row((label, count(float(there)), number(float(fewer), out_of_reach)))
-        for label, there, fewer in zip(grid.labels, of.there, of.deaths, strict=True)
+        Row(
+            (label, withheld(), withheld())
+            if gone
+            else (label, count(float(there)), number(float(fewer), out_of_reach))
+        )
+        for label, there, fewer, gone in zip(
+            grid.labels, of.there, of.deaths, found.withheld, strict=True
+        )
     )
     heads = (
         Column("age", _("age")),
-        Column("there", _("deaths there were"), decimals=0),
+        Column("there", _("deaths there were"), decimals=0, counted=True),
         Column("avoid", _("deaths fewer for one month"), decimals=1),
     )
     title = _(
@@ -55,6 +61,8 @@ def avoidable(found: Findings) -> Table:
         who=names.sex_and_year(found.of.sex, found.period),
     )
     note = say.exchange()
-    if any(isinstance(cell, Gap) and cell.reason for row in rows for cell in row.cells):
+    if any(
+        isinstance(cell, Gap) and cell.reason == out_of_reach for row in rows for cell in row.cells
+    ):
         note += " " + _("Where there is no number, not even all deaths of that age make a month.")
     return Table("avoid", title, heads, rows, note)

@@ -9,7 +9,7 @@ from engine.ages import AgeGrid, Array
 from server.charts.chart import At, Chart, Note, Series
 from server.charts.scales import log_ticks, ticks
 from server.pages.drawing import at_age, isolated, places, single_years, values
-from server.pages.population_year_living import axis, beyond, columns, who
+from server.pages.population_year_living import axis, beyond, columns, shown, who
 from server.pages.population_year_tables import DAYS, counted_groups
 from server.results.population_year import Findings, finite
 from server.sentences import population_year as say
@@ -20,7 +20,7 @@ from server.sentences.text import _
 def rates(found: Findings, source: str) -> Chart | None:
     table, top = found.chain.table, axis(found)[1]
     grid, counted = table.grid, counted_groups(found)
-    per_thousand = np.where(table.mx[:-1] > 0, 1000 * table.mx[:-1], np.nan)
+    per_thousand = shown(found, np.where(table.mx[:-1] > 0, 1000 * table.mx[:-1], np.nan))
     inside = grid.mids[:-1] < top
     if not np.isfinite(per_thousand[inside]).any():
         return None
@@ -61,7 +61,7 @@ def rates(found: Findings, source: str) -> Chart | None:
                 at=At(103, 0.25 * at_age(grid, per_thousand, 103), "center"),
             )
         )
-    shown = log_ticks(low / 2.5, high * 1.5)
+    on_scale = log_ticks(low / 2.5, high * 1.5)
     gaps = bool(np.any(table.mx[:closed] == 0))
     return Chart(
         key="rates",
@@ -79,8 +79,8 @@ def rates(found: Findings, source: str) -> Chart | None:
         x_range=axis(found),
         y_title=_("per 1,000, ratio scale"),
         y_range=(low / 2.5, high * 1.5),
-        y_ticks=shown,
-        y_text=tuple(f"{at:,g}" for at in shown),
+        y_ticks=on_scale,
+        y_text=tuple(f"{at:,g}" for at in on_scale),
         y_log=True,
         hover=_("age %{customdata}: %{y:,.2f} per 1,000"),
         table="life",
@@ -152,9 +152,9 @@ def gain(found: Findings, source: str) -> Chart | None:
     if not found.gainful:
         return None
     grid, days = found.chain.table.grid, DAYS * found.gain
-    density = days[:-1] / grid.widths[:-1]
-    highest = float(density.max())
-    shown = ticks(0, 1.2 * highest)
+    density = shown(found, days[:-1] / grid.widths[:-1])
+    highest = float(np.nanmax(density)) if np.isfinite(density).any() else float(days.max())
+    on_scale = ticks(0, 1.2 * highest)
     span, share = _most(grid, days)
     unit = (
         _(
@@ -182,14 +182,14 @@ def gain(found: Findings, source: str) -> Chart | None:
         x_range=axis(found),
         y_title=_("days"),
         y_range=(0, 1.2 * highest),
-        y_ticks=shown,
+        y_ticks=on_scale,
         hover=_("age %{customdata}: %{y:.2f} days"),
         table="gain",
         series=columns(found, density),
         notes=(
             Note(
                 _("all ages together: {days} days", days=number(float(days.sum()), 1)),
-                At(24, shown[-1] - shown[1] / 2, narrow_x=6),  # between two guides
+                At(24, on_scale[-1] - on_scale[1] / 2, narrow_x=6),  # between two guides
             ),
         ),
     )

@@ -10,7 +10,7 @@ from engine.indicators import GROUPS, Group, find
 from engine.settings import Settings
 from engine.standardisation import used
 from server.exports.table import Cell, Column, Gap, GapKind, Row, Table
-from server.pages.cells import columns, count, number, triple
+from server.pages.cells import columns, count, number, triple, withheld
 from server.results.estimating import USUAL
 from server.results.population_year import Findings
 from server.sentences import names
@@ -173,8 +173,8 @@ def life(found: Findings) -> Table:
     """The life table, of 100,000 born."""
     heads = (
         Column("age", _("age")),
-        Column("deaths", _("deaths"), decimals=0),
-        Column("person_years", _("person-years"), decimals=0),
+        Column("deaths", _("deaths"), decimals=0, counted=True),
+        Column("person_years", _("person-years"), decimals=0, counted=True),
         Column("mx", "m_x", _("per 1,000"), 3),
         Column("ax", "a_x", _("years"), 2),
         Column("qx", "q_x", decimals=5),
@@ -205,13 +205,11 @@ def _life_row(found: Findings, at: int) -> Row:
     read = [table.ax[at], table.qx[at]]
     read += [RADIX * column[at] for column in (table.lx, table.dx, table.Lx)]
     read.append(table.ex[at])
+    shown: list[Cell] = [number(value if found.readable else np.nan, why) for value in read]
+    if counted and found.withheld[at]:  # the last, years still to live, rests on all later ages
+        counts, rate, shown = (withheld(), counts[1]), withheld(), [withheld()] * 5 + shown[5:]
     return Row(
-        (
-            table.grid.labels[at],
-            *counts,
-            rate,
-            *(number(value if found.readable else np.nan, why) for value in read),
-        ),
+        (table.grid.labels[at], *counts, rate, *shown),
         second=_("rate of joined ages") if counted and rates.joined[at] else "",
     )
 
@@ -248,14 +246,25 @@ def gains(found: Findings) -> Table:
         Row(
             (
                 label,
-                number(gain),
-                number(gain / width if np.isfinite(width) else np.nan, no_end),
-                number(part),
-                number(worth, no_end),
+                *(
+                    withheld() if gone else number(value, why)
+                    for value, why in (
+                        (gain, ""),
+                        (gain / width if np.isfinite(width) else np.nan, no_end),
+                        (part, ""),
+                        (worth, no_end),
+                    )
+                ),
             )
         )
-        for label, gain, width, part, worth in zip(
-            grid.labels, days, grid.widths, found.elasticity, survival, strict=True
+        for label, gain, width, part, worth, gone in zip(
+            grid.labels,
+            days,
+            grid.widths,
+            found.elasticity,
+            survival,
+            found.withheld_of_table,
+            strict=True,
         )
     ]
     total = Row((_("all ages"), number(days.sum()), "", number(found.elasticity.sum()), ""))

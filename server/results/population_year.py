@@ -3,6 +3,7 @@
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from engine import ageing, indicators, sensitivity
 from engine import settings as named
@@ -64,6 +65,18 @@ class Findings:
     def period(self) -> str:
         """The year, or the years added up."""
         return names.years(span(self.of.period, self.settings.years))
+
+    @property
+    def withheld(self) -> NDArray[np.bool_]:
+        """Groups of the counts whose deaths are withheld, [age]."""
+        return self.loaded.withheld_on(self.loaded.panel.grid)
+
+    @property
+    def withheld_of_table(self) -> NDArray[np.bool_]:
+        """The same on the ages of the table, of which a law's are none."""
+        grid, held = self.chain.table.grid, self.loaded.panel.grid
+        own = len(held) - 1 if self.chain.modelled else len(held)
+        return np.append(self.withheld[:own], np.zeros(len(grid) - own, np.bool_))
 
     @property
     def readable(self) -> bool:

@@ -43,9 +43,7 @@ def reason(code: int, settings: Settings) -> str:
             "The same deaths are counted on both sides, so that chance plays no part."
         ),
         Reason.NOT_SIMULATED: _("No interval was simulated for it."),
-        Reason.WITHHELD: _(
-            "It is withheld, since it rests on so few deaths that a person might be recognised."
-        ),
+        Reason.WITHHELD: withheld(),
         Reason.OFTEN_LOST: _(
             "No interval can be given: with slightly other deaths it could often not be read."
         ),
@@ -76,6 +74,14 @@ def reason(code: int, settings: Settings) -> str:
         Reason.NOT_DECOMPOSED: _("No exact share of this difference belongs to an age."),
     }
     return sentences[Reason(code)]
+
+
+def withheld() -> str:
+    """Why a number is not shown that is there."""
+    return _(
+        "It is withheld: so few deaths that a person might be recognised, or a number from which"
+        " such a one could be worked out."
+    )
 
 
 def caution(one: Indicator, person_years: float) -> str:

@@ -1,0 +1,34 @@
+"""What is withheld and why, in words."""
+
+from collections.abc import Sequence
+
+from server.sentences.names import listed
+from server.sentences.text import _, n_
+
+Told = tuple[str, str] | None
+MOST = 8  # ages named
+
+
+def withheld(ages: Sequence[str]) -> Told:
+    """A caution beside figures that rest on withheld counts."""
+    what = (
+        n_(
+            "The deaths at {ages} are withheld: so few that a person might be recognised, or needed"
+            " to keep such a number from being worked out.",
+            "The deaths at {ages} are withheld: so few that a person might be recognised, or needed"
+            " to keep such numbers from being worked out.",
+            len(ages),
+            ages=listed(ages, most=MOST),
+        )
+        if ages
+        else _("Some of the counts behind these figures are withheld, since they are very small.")
+    )
+    return (
+        _("Withheld"),
+        what
+        + " "
+        + _(
+            "Estimates from what is shown stand in for them, so the figures here may be a little"
+            " off, and no further decimals of them are given."
+        ),
+    )
