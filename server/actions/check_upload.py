@@ -1,14 +1,18 @@
 """Read a mapped draft, run every check, and keep the report with the edition that stood then."""
 
+from dataclasses import replace
+
 from server.actions.standing import standing
+from server.intake.checks import basis
 from server.intake.mapping import Mapping
-from server.intake.parsing import READER, Handed, parse
+from server.intake.parsing import READER, Handed, Parsed, parse
 from server.intake.report import Report
+from server.intake.standing import Standing
 from server.jobs.executor import Tell, untold
 from server.store import editions, uploads
 from server.store.connect import Session, transaction
 from server.store.errors import Refused
-from server.store.records import Upload
+from server.store.records import Basis, Upload
 
 # what it is at, texts of the catalogue
 STAGES = ("opening the files", "reading and checking the rows", "writing the report")
@@ -27,7 +31,10 @@ def check_upload(session: Session, *, upload_id: int, tell: Tell = untold) -> Re
     tell(0, len(STAGES), STAGES[0])
     files = handed(session, upload)
     tell(1, len(STAGES), STAGES[1])
-    report = Report.of(parse(files, known))
+    parsed = parse(files, known)
+    if upload.basis is not None:
+        parsed = with_basis(parsed, upload.basis, known)
+    report = Report.of(parsed)
     tell(2, len(STAGES), STAGES[2])
     with transaction(session):
         uploads.set_report(
@@ -38,6 +45,13 @@ def check_upload(session: Session, *, upload_id: int, tell: Tell = untold) -> Re
             base=base,
         )
     return report
+
+
+def with_basis(parsed: Parsed, own: Basis, known: Standing) -> Parsed:
+    """With what is found in the basis, and the years that get a new population."""
+    bases = basis.Bases(own, frozenset(parsed.cells), parsed.breaks, known)
+    problems = (*parsed.problems, *basis.problems_of(bases))
+    return replace(parsed, problems=problems, rebased=basis.rebased(bases))
 
 
 def handed(session: Session, upload: Upload) -> list[Handed]:

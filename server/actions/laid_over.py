@@ -6,6 +6,7 @@ from dataclasses import dataclass, replace
 from server.actions import totals
 from server.actions.recoding import Recoded, listed, recoded
 from server.actions.taking import taken
+from server.intake import break_rows
 from server.intake.parsing import Parsed
 from server.intake.successions import Successions
 from server.store import breaks
@@ -53,9 +54,9 @@ def made_of(parsed: Parsed, taking: Taking, base: Base) -> Made:
         found = base.load(Selection(periods=periods, cause=None))
         return {key: cell for key, cell in found.items() if key not in before.gone}
 
-    new = breaks.in_order((*breaks.new(parsed.breaks), *_carried(base.breaks, said, ended)))
+    new = breaks.in_order((*break_rows.new(parsed.breaks), *_carried(base.breaks, said, ended)))
     gone = (
-        *breaks.ended(parsed.breaks, base.breaks),
+        *break_rows.ended(parsed.breaks, base.breaks),
         *(one for one in base.breaks if one.area in ended),
     )
     summed = totals.laid_over(

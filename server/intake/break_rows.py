@@ -1,10 +1,13 @@
 """A table of breaks as it is meant."""
 
+from collections.abc import Iterable
+
 from server.intake.areas import is_code
 from server.intake.labels import read_year
 from server.intake.lists import Line, SmallTable, number
-from server.store.breaks import NONE
 from server.store.records import BREAKS, Break
+
+NONE = "none"  # kind of a row that ends the breaks of its area, year and cause
 
 
 def read_line(line: Line) -> Break | None:
@@ -35,3 +38,19 @@ def read_lines(table: SmallTable) -> tuple[tuple[int, Break], ...]:
     """Each row that can be read, with its number."""
     found = ((line.row, read_line(line)) for line in table.lines)
     return tuple((row, one) for row, one in found if one is not None)
+
+
+def ended(said: Iterable[Break], base: Iterable[Break]) -> tuple[Break, ...]:
+    """Those of the base that a row of the kind NONE ends: all of its area, year and cause.
+
+    >>> old = Break("", "2012", "population")
+    >>> ended([Break("", "2012", NONE)], [old]) == (old,)
+    True
+    """
+    rows = {(one.area, one.period, one.cause) for one in said if one.kind == NONE}
+    return tuple(one for one in base if (one.area, one.period, one.cause) in rows)
+
+
+def new(said: Iterable[Break]) -> tuple[Break, ...]:
+    """Those to be kept: without the rows that only end others."""
+    return tuple(one for one in said if one.kind != NONE)

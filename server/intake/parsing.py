@@ -65,6 +65,7 @@ class Parsed:
     whole: str  # code of the area that is summed from the others; empty where none is
     successions: Successions = NOTHING  # not yet applied: the edition before has old codes too
     breaks: tuple[Break, ...] = ()
+    rebased: tuple[str, ...] = ()  # years held that get a new population under deaths that stand
     unstated: tuple[Unstated, ...] = ()  # what became of counts that do not state all
 
     @property

@@ -3,6 +3,7 @@
 import json
 from dataclasses import asdict, dataclass
 
+from server.intake.break_rows import NONE
 from server.intake.parsing import Parsed
 from server.intake.problems import Problem
 from server.intake.sharing import Unstated
@@ -25,6 +26,9 @@ class Report:
     persons: bool  # persons are summed from women and men
     delivered: tuple[str, ...]  # codes of areas kept as delivered
     unstated: tuple[Unstated, ...] = ()  # what became of counts that do not state all
+    becoming: tuple[tuple[str, ...], ...] = ()  # old code, first and last year, new codes, how
+    breaks: tuple[tuple[str, ...], ...] = ()  # year, kind (empty: it ends), area
+    rebased: tuple[str, ...] = ()  # years held that get a new population
 
     @classmethod
     def of(cls, parsed: Parsed) -> "Report":
@@ -49,6 +53,15 @@ class Report:
             persons=any(sex == "f" and (*place, "m") in sexes for *place, sex in sexes),
             delivered=delivered,
             unstated=parsed.unstated,
+            becoming=tuple(
+                (one.code, *one.span, ", ".join(one.becomes), one.way)
+                for one in parsed.successions.of
+            ),
+            breaks=tuple(
+                (one.period, one.kind if one.kind != NONE else "", one.area)
+                for one in parsed.breaks
+            ),
+            rebased=parsed.rebased,
         )
 
     @property
@@ -70,6 +83,8 @@ class Report:
         stored = json.loads(text)
         lists = {name: tuple(value) for name, value in stored.items() if isinstance(value, list)}
         lists["problems"] = tuple(Problem.from_json(problem) for problem in stored["problems"])
+        for name in ("becoming", "breaks"):
+            lists[name] = tuple(tuple(row) for row in stored.get(name, ()))
         lists["grids"] = tuple(tuple(labels) for labels in stored["grids"])
         lists["unstated"] = tuple(Unstated(**year) for year in stored.get("unstated", ()))
         return cls(**(stored | lists))

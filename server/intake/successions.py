@@ -69,6 +69,18 @@ class Succession:
     becomes: tuple[str, ...]
     shares: tuple[Share, ...]
 
+    @property
+    def span(self) -> tuple[str, str]:
+        """First and last year; empty where none is named."""
+        return self.first.removeprefix(FIRST), self.last.removeprefix(LAST)
+
+    @property
+    def way(self) -> str:
+        """merged, shared or ended."""
+        if not self.shares:
+            return "ended"
+        return "merged" if all(share.whole for share in self.shares) else "shared"
+
     def covers(self, area: str, period: str) -> bool:
         return area == self.code and self.first <= period <= self.last
 

@@ -11,7 +11,7 @@ from server.pages.page import Frame, Notice, Page
 from server.pages.upload import locator
 from server.pages.upload_effect import Effect, effect
 from server.results.preview import Preview
-from server.sentences import methods, reading
+from server.sentences import methods, reading, small_tables
 from server.sentences import uploads as say
 from server.sentences.numbers import whole
 from server.sentences.pieces import Piece, Sentence, phrase
@@ -72,7 +72,7 @@ def build(session: Session, upload_id: int, shown: Preview | None = None) -> Upl
         errors=_listing("errors", _("Must be put right"), report.errors),
         warnings=_listing("warnings", _("Wants a second look"), report.warnings),
         counted=_("Rows are counted as in the file, the heading being row 1."),
-        holds=_holds(report) if report.periods else (),
+        holds=_holds(report),
         making=None if upload.edition else _making(session, upload, report, shown),
     )
 
@@ -148,7 +148,10 @@ def _table(problems: tuple[Problem, ...]) -> Table:
 
 
 def _holds(report: Report) -> tuple[tuple[str, str], ...]:
-    return say.holds(
+    told = small_tables.facts(report.becoming, report.breaks, report.rebased)
+    if not report.periods:
+        return told
+    counts = say.holds(
         areas=report.areas,
         sexes=report.sexes,
         periods=report.periods,
@@ -159,6 +162,7 @@ def _holds(report: Report) -> tuple[tuple[str, str], ...]:
         whole_area=report.whole,
         delivered=report.delivered,
     )
+    return (*counts, *told)
 
 
 def _making(session: Session, upload: Upload, report: Report, shown: Preview | None) -> Making:

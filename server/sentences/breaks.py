@@ -1,15 +1,28 @@
 """Breaks and years of shock in words."""
 
 from collections.abc import Sequence
+from typing import Protocol
 
 from server.sentences import names
 from server.sentences.basis import Told
 from server.sentences.numbers import number
 from server.sentences.pieces import Sentence, phrase
 from server.sentences.text import _, n_
-from server.store.records import Break
 
-SHORT = 34  # signs of a note that fits into a sentence of several breaks
+
+class Break(Protocol):
+    """What is told of a break."""
+
+    @property
+    def period(self) -> str: ...
+    @property
+    def kind(self) -> str: ...
+    @property
+    def note(self) -> str: ...
+    @property
+    def ratio(self) -> float | None: ...
+    @property
+    def ratio_error(self) -> float | None: ...
 
 
 def kind(code: str) -> str:

@@ -1,11 +1,12 @@
 """What is asked about areas over time and about breaks."""
 
+from collections.abc import Sequence
+
+from server.sentences import names
 from server.sentences.breaks import kind
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.reading import Options
 from server.sentences.text import _
-from server.store.breaks import NONE
-from server.store.records import BREAKS
 
 
 def field(role: str, name: str, line: int) -> str:
@@ -39,11 +40,12 @@ def hint(name: str) -> str:
     }.get(name, "")
 
 
-def kinds() -> Options:
+def kinds(codes: Sequence[str], none: str) -> Options:
+    """The kinds of breaks, and the one that ends another."""
     return (
         ("", _("nothing")),
-        *((code, kind(code)) for code in BREAKS),
-        (NONE, _("the break of that year falls away")),
+        *((code, kind(code)) for code in codes),
+        (none, _("the break of that year falls away")),
     )
 
 
@@ -80,3 +82,49 @@ def about_rebase() -> Sentence:
         ),
         rebase=Piece(_("New population for years already held:"), emphasis="strong"),
     )
+
+
+def facts(
+    becoming: Sequence[Sequence[str]], breaks: Sequence[Sequence[str]], rebased: Sequence[str]
+) -> tuple[tuple[str, str], ...]:
+    """What was understood of small tables and of a population alone: word and text."""
+    found = []
+    if becoming:
+        found.append((_("Areas that change"), "; ".join(_becomes(*row) for row in becoming)))
+    if breaks:
+        found.append((_("Breaks"), "; ".join(_break(*row) for row in breaks)))
+    if rebased:
+        said = _(
+            "{years}: the deaths that stand stay, with their status",
+            years=names.listed(list(rebased), most=12),
+        )
+        found.append((_("New population for years already held"), said))
+    return tuple(found)
+
+
+def _becomes(code: str, first: str, last: str, new: str, way: str) -> str:
+    span = _years(first, last)
+    texts = {
+        "merged": _("{code} is counted under {new}, {span}", code=code, new=new, span=span),
+        "shared": _("{code} is shared out to {new}, {span}", code=code, new=new, span=span),
+        "ended": _("{code} ends, {new} begin in {first}", code=code, new=new, first=first),
+    }
+    return texts[way]
+
+
+def _years(first: str, last: str) -> str:
+    if not first and not last:
+        return _("in every year")
+    if not first:
+        return _("up to {last}", last=last)
+    if not last:
+        return _("from {first} on", first=first)
+    return _("from {first} to {last}", first=first, last=last)
+
+
+def _break(period: str, code: str, area: str) -> str:
+    if not code:
+        return _("{year}: falls away", year=period)
+    if not area:
+        return _("{year}: {kind}", year=period, kind=kind(code))
+    return _("{year}: {kind}, {area}", year=period, kind=kind(code), area=area)

@@ -9,8 +9,6 @@ from server.store import collections
 from server.store.records import Break
 from server.store.tables import BreakRange
 
-NONE = "none"  # kind of a handed-in row that ends the breaks of its area, year and cause
-
 
 def listing(session: Session, collection: str, number: int) -> tuple[Break, ...]:
     """All that hold in an edition, by year, then area. One statement."""
@@ -33,19 +31,3 @@ def listing(session: Session, collection: str, number: int) -> tuple[Break, ...]
 def in_order(breaks: Iterable[Break]) -> tuple[Break, ...]:
     """By year, then area, kind and cause."""
     return tuple(sorted(breaks, key=lambda one: (one.period, one.area, one.kind, one.cause)))
-
-
-def ended(said: Iterable[Break], base: Iterable[Break]) -> tuple[Break, ...]:
-    """Those of the base that a row of the kind NONE ends: all of its area, year and cause.
-
-    >>> old = Break("", "2012", "population")
-    >>> ended([Break("", "2012", NONE)], [old]) == (old,)
-    True
-    """
-    rows = {(one.area, one.period, one.cause) for one in said if one.kind == NONE}
-    return tuple(one for one in base if (one.area, one.period, one.cause) in rows)
-
-
-def new(said: Iterable[Break]) -> tuple[Break, ...]:
-    """Those to be kept: without the rows that only end others."""
-    return in_order(one for one in said if one.kind != NONE)

@@ -82,6 +82,12 @@ CHAPTERS = (
         "Does what is said of areas and breaks fit the areas and years that are held?",
         (lists, successions, moved_counts, breaks),
     ),
+    Chapter(
+        "basis",
+        "How the counts were made",
+        "Are the deaths those of the people counted, and does the basis of an edition go on?",
+        (basis,),
+    ),
 )
 
 KINDS: dict[str, Kind] = {check.key: check for one in CHAPTERS for check in one.checks}

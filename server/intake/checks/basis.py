@@ -61,11 +61,13 @@ class Bases:
 
     @property
     def kept(self) -> set[str]:
-        """Years held whose population stays."""
-        handed = self.populations(self.handed)
-        return {
-            year for place in self.populations(self.standing.held) - handed for year in place[1:]
+        """Years held whose population stays; wholes are sums of what is handed in."""
+        areas = self.standing.areas
+        wholes = {area.parent for area in areas} & {
+            area.code for area in areas if not area.delivered
         }
+        left = self.populations(self.standing.held) - self.populations(self.handed)
+        return {year for area, year in left if area not in wholes}
 
 
 def rebased(bases: Bases) -> tuple[str, ...]:

@@ -3,10 +3,10 @@
 from collections.abc import Iterator
 from dataclasses import dataclass
 
+from server.intake.break_rows import NONE, ended
 from server.intake.checks.check import Check
 from server.intake.lists import SmallTable
 from server.intake.problems import Fault, Problem, Value
-from server.store.breaks import NONE, ended
 from server.store.records import Break
 
 

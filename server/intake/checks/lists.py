@@ -4,12 +4,12 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
 from server.intake.areas import is_code
+from server.intake.break_rows import NONE
 from server.intake.checks.check import Check
 from server.intake.labels import ALL_AGES, read_age, read_sex, read_year
 from server.intake.lists import MOST_ROWS, NEEDED, Line, SmallTable, number
 from server.intake.problems import Fault, Problem
 from server.intake.successions import COUNTS
-from server.store.breaks import NONE
 from server.store.records import BREAKS
 
 

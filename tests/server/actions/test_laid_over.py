@@ -11,10 +11,10 @@ from server.actions.commit_upload import commit_upload
 from server.actions.rebuild_editions import rebuild_editions
 from server.intake.mapping import Mapping
 from server.intake.report import Report
-from server.store import areas, breaks, schedules
+from server.store import areas, breaks, editions, schedules
 from server.store.errors import Refused
 from server.store.records import Break, Edition, Key, Selection, Taking, Upload, Vector
-from tests.factories import COLUMNS, NOON, checked_upload, counts_csv, stored_collection
+from tests.factories import BASIS, COLUMNS, NOON, checked_upload, counts_csv, stored_collection
 
 WHOLE = replace(COLUMNS, whole="isle", whole_name="The isle")
 THREE, YEARS = ("north", "south", "cape"), (2001, 2002, 2003)
@@ -248,3 +248,30 @@ def test_an_old_code_without_counts_in_a_year_is_an_error_with_its_row(session: 
     assert found == {("merged_part_missing", 3)}
     with pytest.raises(Refused, match="2 errors"):
         made(session, late)
+
+
+def test_a_new_population_alone_leaves_the_deaths_and_their_status(session: Session) -> None:
+    deaths = counts_csv(THREE, years=YEARS)
+    first_mapping = replace(WHOLE, provisional_years=("2003",))
+    made(session, checked_upload(session, deaths, mapping=first_mapping))
+    people = replace(WHOLE, deaths="")
+    named = replace(BASIS, vintage="after the census of 2001")
+    table = counts_csv(THREE, years=YEARS).replace(b",9", b",8")  # a thousand fewer in each row
+    upload = checked_upload(session, table, mapping=people, role="population", basis=named)
+    report = Report.from_json(upload.report)
+    assert report.problems == ()
+    assert report.rebased == ("2001", "2002", "2003")
+    second = made(session, upload)
+    before, after = held(session, 1), held(session, 2)
+    assert before.keys() == after.keys()
+    for key, cell in before.items():
+        same = np.array_equal(after[key].values, cell.values)
+        assert same == (key.measure == "deaths")
+        if key.measure == "deaths":
+            assert after[key].status == cell.status
+    status = schedules.contents(session, "saltmarsh", 2).status
+    assert {key[2] for key, word in status.items() if word == "provisional"} == {"2003"}
+    first_edition = editions.find(session, "saltmarsh", 1)
+    assert first_edition is not None
+    assert (first_edition.basis.vintage, second.basis.vintage) == ("", named.vintage)
+    assert rebuilt(session)

@@ -9,6 +9,7 @@ from server.intake.forms.unpacking import MOST_UNPACKED
 from server.intake.mapping import Form, Mapping
 from server.intake.parsing import Handed
 from server.intake.standing import NOTHING_STANDS, Standing
+from server.store.records import Basis
 from tests.server.intake.tables import (
     AGES,
     Row,
@@ -32,6 +33,7 @@ class Case:
     files: Callable[[], list[Handed]]
     also: str = ""  # other kinds that the same fault must trip, between blanks
     standing: Standing | None = NOTHING_STANDS
+    basis: Basis | None = None
 
 
 def _bytes(content: bytes) -> Callable[[], list[Handed]]:

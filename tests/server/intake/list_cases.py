@@ -1,12 +1,13 @@
 """One spoilt table of areas over time or of breaks for each kind of problem."""
 
+from dataclasses import replace
 
 from server.intake.mapping import Mapping
 from server.intake.parsing import Handed, parse
 from server.intake.standing import Standing
 from server.store.records import Area, Basis, Break
 from tests.server.intake.form_cases import Case
-from tests.server.intake.tables import counts, rows
+from tests.server.intake.tables import counts, population, rows
 
 SOUND = rows(("north", "south", "cape"))
 BASIS = Basis("residents", "death", "midyear", "1 July", "office", "after the 2001 census")
@@ -87,4 +88,29 @@ LIST_CASES = (
     _case("break_ends_nothing", breaks("south,2012,none")),
     _case("ratio_of_other_break", breaks(",2013,population,,,1.02,0.01")),
     _case("ratio_without_error", breaks(",2013,coding,,,1.02")),
+)
+
+
+def _basis(key: str, *files: Handed, **stated: str) -> Case:
+    """A basis that differs in these points from the one that stands."""
+    own = replace(BASIS, **stated)  # type: ignore[arg-type]
+    return Case(key, lambda: list(files), standing=STANDING, basis=own)
+
+
+PEOPLE = population(SOUND)
+AGAIN = population(rows(("north", "south", "cape"), years=(2013, 2014)))
+BASIS_CASES = (
+    Case(
+        "occurrences_over_residents",
+        lambda: [counts(SOUND)],
+        basis=replace(BASIS, people="occurrences"),
+    ),
+    Case(
+        "registered_over_lived",
+        lambda: [counts(SOUND)],
+        basis=replace(BASIS, dated_by="registration"),
+    ),
+    _basis("basis_changes", counts(rows(years=(2015,))), population_date="1 January"),
+    _basis("rebase_without_name", PEOPLE),
+    _basis("vintage_in_part", AGAIN, vintage="after the 2011 census"),
 )

@@ -5,6 +5,7 @@ from pathlib import Path
 
 import pytest
 
+from server.actions.check_upload import with_basis
 from server.intake.checks import KINDS
 from server.intake.checks.check import LISTED
 from server.intake.parsing import Handed, parse
@@ -13,7 +14,7 @@ from server.intake.standing import Standing
 from server.store.records import Area, Key
 from tests.server.intake.cases import CASES, ONE, SOUND, WOMEN, Case
 from tests.server.intake.data_cases import DATA_CASES
-from tests.server.intake.list_cases import LIST_CASES
+from tests.server.intake.list_cases import BASIS_CASES, LIST_CASES
 from tests.server.intake.tables import (
     births,
     counts,
@@ -28,7 +29,7 @@ from tests.server.intake.tables import (
 
 HERE = Path(__file__).parent
 SENTENCES: dict[str, str] = json.loads((HERE / "sentences.json").read_text(encoding="utf-8"))
-EVERY = (*CASES, *DATA_CASES, *LIST_CASES)
+EVERY = (*CASES, *DATA_CASES, *LIST_CASES, *BASIS_CASES)
 
 
 def problems(*files: Handed) -> list[Problem]:
@@ -41,7 +42,10 @@ def keys(*files: Handed) -> list[str]:
 
 @pytest.mark.parametrize("case", EVERY, ids=lambda case: case.key)
 def test_a_fault_trips_its_check_and_no_other(case: Case) -> None:
-    found = parse(case.files(), case.standing).problems
+    parsed = parse(case.files(), case.standing)
+    if case.basis is not None:
+        parsed = with_basis(parsed, case.basis, case.standing or Standing())
+    found = parsed.problems
     assert {problem.key for problem in found} == {case.key, *case.also.split()}
     first = next(problem for problem in found if problem.key == case.key)
     assert str(first) == SENTENCES[case.key]
