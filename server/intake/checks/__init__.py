@@ -56,7 +56,7 @@ CHAPTERS = (
         "sums",
         "What belongs together",
         "Do deaths, populations and totals stand beside one another as they must?",
-        (series, totals, unstated, worked_out, plausibility, basis),
+        (series, totals, unstated, worked_out, plausibility),
     ),
     Chapter(
         "years",
