@@ -5,7 +5,7 @@ from dataclasses import dataclass
 from server.exports.table import Column, Row, Table
 from server.intake.forms.delimiters import NAMES
 from server.intake.forms.encodings import ENCODINGS
-from server.intake.mapping import EVERY_ROLE, LISTS, ROLES, Mapping, numbers_of
+from server.intake.mapping import EVERY_ROLE, LISTS, NUMBERS, ROLES, Mapping, numbers_of
 from server.intake.recognising.columns import fields_of
 from server.intake.recognising.look import Looked
 from server.pages.form_fields import Field, select, text
@@ -45,7 +45,11 @@ def file_reading(file: UploadFile, looked: Looked, errors: dict[str, str]) -> Fi
     return FileReading(
         key=role,
         line=say.file_line(
-            role, reading.name, reading.row_count, reading.delimiter_name, reading.encoding
+            role,
+            reading.name,
+            reading.row_count,
+            "" if reading.sheets else reading.delimiter_name,
+            reading.encoding,
         ),
         notes=_notes(looked),
         problems=tuple(problem.sentence(_, whole) for problem in reading.problems),
@@ -80,6 +84,13 @@ def _sent(looked: Looked) -> tuple[tuple[str, str], ...]:
             (f"{role}.sex_text.{place}", said)
             for place, (said, _proposal) in enumerate(looked.noticed.sexes)
         ),
+    )
+
+
+def open_questions(looked: Looked) -> tuple[str, ...]:
+    """What the file does not say by itself and nothing is chosen for yet."""
+    return tuple(
+        ask.question(one, tuple(said for said, _ in looked.noticed.sexes)) for one in looked.open
     )
 
 
@@ -153,7 +164,7 @@ def _marks(looked: Looked) -> Field:
     if not found.example:
         code = ask.marks_code(form.decimal, form.thousands)
         return select(name, _("Numbers are written as"), options, code, width="wide")
-    likely = dict(options)[ask.marks_code(found.decimal, found.thousands)]
+    likely = dict(options)[ask.marks_code(found.decimal, found.thousands)].partition(":")[0]
     return select(
         name,
         _("Numbers are written as"),
@@ -247,17 +258,19 @@ def _columns(looked: Looked) -> tuple[list[Field], list[Field]]:
         if chosen:
             known = why.get((chosen, field))
             level, reason = (known.confidence, known.why) if known else ("kept", "")
-            hint = say.column_hint(say.confidence(level, reason), _values(looked, chosen))
+            hint = say.column_hint(say.confidence(level, reason), _values(looked, field, chosen))
         line = select(f"{looked.role}.{field}", say.field(field), columns, chosen, hint=hint)
         (main if chosen or (field in needed and not mapping.form.across) else rest).append(line)
     return main, rest
 
 
-def _values(looked: Looked, column: str) -> tuple[str, ...]:
-    """A few different values of a column."""
-    if column not in looked.reading.columns:
+def _values(looked: Looked, field: str, column: str) -> tuple[str, ...]:
+    """A few different values of a column; of words those of the whole file."""
+    reading = looked.reading
+    if column not in reading.columns:
         return ()
-    return tuple(filter(None, dict.fromkeys(looked.reading.values(column))))[:SAMPLES]
+    values = reading.values(column) if field in NUMBERS else reading.distinct(column)
+    return tuple(filter(None, dict.fromkeys(values)))[:SAMPLES]
 
 
 def _unused(looked: Looked) -> str:

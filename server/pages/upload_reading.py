@@ -6,7 +6,7 @@ from typing import Any, ClassVar
 
 from server.intake.mapping import LISTS, Mapping
 from server.intake.recognising.look import Before, Looked, Said, look, said_in
-from server.pages.file_reading import FileReading, file_reading, sample
+from server.pages.file_reading import FileReading, file_reading, open_questions, sample
 from server.pages.page import Frame, Page
 from server.pages.reading_questions import Asked, asked, open_errors
 from server.pages.upload import locator
@@ -102,6 +102,7 @@ def build(
             nav="upload",
         ),
         answer=_answer(looked, unreadable, errors),
+        lead=_lead(looked),
         tables=tuple(sample(one) for one in looked),
         place=f"/uploads/{upload.id}",
         collection=collection.code,
@@ -123,6 +124,12 @@ def _answer(looked: tuple[Looked, ...], unreadable: list[str], errors: dict[str,
     if errors:
         return phrase(ask.still_open(len(errors)))
     return say.unreadable(unreadable) if unreadable else say.answer(len(looked))
+
+
+def _lead(looked: tuple[Looked, ...]) -> tuple[Sentence, ...]:
+    """What the files do not say by themselves, if anything."""
+    open_ones = [asked for one in looked for asked in open_questions(one)]
+    return (phrase(ask.asked_below(tuple(dict.fromkeys(open_ones)))),) if open_ones else ()
 
 
 def _stated(upload: Upload, looked: tuple[Looked, ...]) -> Mapping:

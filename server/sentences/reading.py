@@ -63,12 +63,16 @@ def unreadable(files: list[str]) -> Sentence:
 
 
 def file_line(code: str, name: str, rows: int, delimiter: str, encoding: str) -> str:
-    """One file: what it is, its name and how it is written."""
+    """One file: what it is, its name and how it is written; a workbook has neither sign nor
+    encoding."""
+    counted = n_("one row", "{count} rows", rows, count=whole(rows))
+    if not delimiter:
+        return _("{role}: {name}, {rows}", role=role(code), name=name, rows=counted)
     return _(
         "{role}: {name}, {rows}, columns parted by {delimiter}, {encoding}",
         role=role(code),
         name=name,
-        rows=n_("one row", "{count} rows", rows, count=whole(rows)),
+        rows=counted,
         delimiter=_(delimiter),
         encoding=encoding,
     )
@@ -88,7 +92,7 @@ def column_hint(why: str, values: tuple[str, ...]) -> str:
     """Beside a column: how sure it is, and some of its values."""
     if not values:
         return why
-    return _("{why}; {values}", why=why, values=", ".join(values))
+    return _("{values}; {why}", values=", ".join(values), why=why)
 
 
 def not_found() -> str:

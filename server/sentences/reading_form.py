@@ -45,12 +45,12 @@ def marks_code(decimal: str, thousands: str) -> str:
 
 
 def marks_hint(example: str, *, sure: bool, proposed: str) -> str:
-    """Why the marks are asked; `proposed` is the label of the likelier answer."""
+    """Why the marks are asked; `proposed` is a number in the likelier way."""
     if sure:
         return _("as in “{example}”", example=example)
     return _(
-        "“{example}” can be read in two ways, a thousand times apart. Where the counts are whole "
-        "it is this: {proposed}",
+        "“{example}” can be read in two ways, a thousand times apart; where counts are whole, they "
+        "are written as {proposed}",
         example=example,
         proposed=proposed,
     )
@@ -108,7 +108,7 @@ def units() -> Options:
 
 
 def unit_label(number: str) -> str:
-    return _("{number} is counted in", number=field(number).capitalize())
+    return _("{number}, counted in", number=field(number).capitalize())
 
 
 def unit_hint(proposed: str) -> str:
@@ -280,3 +280,21 @@ def still_open(count: int) -> str:
         "{count} answers are missing before the files can be checked; they are marked below.",
         count,
     )
+
+
+def question(key: str, sexes: tuple[str, ...]) -> str:
+    """A question about a file that nothing is chosen for yet."""
+    if key == "sexes":
+        return _("which sex is meant by {texts}", texts=quoted(sexes))
+    return {
+        "kind": _("what it holds"),
+        "marks": _("how numbers are written"),
+        "number": _("what the cells count"),
+        "units": _("what is counted in thousands or the like"),
+        "rate_is": _("whether these are rates or probabilities"),
+    }[key]
+
+
+def asked_below(questions: tuple[str, ...]) -> str:
+    """Under the first sentence."""
+    return _("The files do not say by themselves: {listed}.", listed="; ".join(questions))

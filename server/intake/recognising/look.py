@@ -106,9 +106,9 @@ def _recognised(reading: Reading, role: str, wide: tuple[str, ...] | None = None
 def _first(content: bytes, name: str, role: str, before: Sequence[Before]) -> Looked:
     """As the newest earlier file that fits was read; where none does, as is likely, and what the
     newest one had that this one lacks."""
+    first = _sheet_of(content, name, role)
     if not before or role in LISTS:
-        return _recognised(proposed(content, name, Form()), role)
-    first = proposed(content, name, Form())
+        return _recognised(first, role)
     lost = []
     for earlier in before:
         sheet, reading = earlier.mapping.form.sheet, first
@@ -119,6 +119,17 @@ def _first(content: bytes, name: str, role: str, before: Sequence[Before]) -> Lo
             return replace(_as_before(reading, role, earlier.mapping), before=earlier)
         lost.append(missing)
     return replace(_recognised(first, role), before=before[0], lost=lost[0])
+
+
+def _sheet_of(content: bytes, name: str, role: str) -> Reading:
+    """The file as proposed; of a workbook the first sheet that holds what the role asks for."""
+    first = proposed(content, name, Form())
+    shown = [tab.name for tab in first.sheets if not tab.hidden and tab.rows > 1]
+    for sheet in shown if len(shown) > 1 else ():
+        reading = first if sheet == first.form.sheet else proposed(content, name, Form(sheet=sheet))
+        if kind(reading).role == role:
+            return reading
+    return first
 
 
 def _missing(reading: Reading, role: str, kept: Mapping) -> tuple[tuple[str, str], ...]:

@@ -27,22 +27,37 @@ class Heading:
 
 
 def heading(rows: Rows) -> Heading:
-    """The first row that names most of the columns, with the rows of headings beside it.
+    """The row that calls most columns by their usual names, of several the first; else the first
+    row that names most of the columns; with the rows of headings beside it.
 
     A heading names things that the rows below it do not repeat, so a row that could as well be one
     of counts is none, unless it is of years or ages.
     """
     cells = [tuple(cell.strip() for cell in row) for row in rows]
-    widths = [sum(1 for cell in row if cell) for row in cells]
-    for at in range(min(len(cells), DEEPEST)):
-        below = [width for width in widths[at + 1 :] if width > 1][:20]
-        if widths[at] < 2 or (below and widths[at] < FILLED * median(below)):
-            continue
-        if _names(cells[at]):
-            first = _upwards(cells, at)
-            last = _downwards(cells, at)
-            return Heading(first + 1, last - first + 1, sure=_sure(cells, at))
-    return Heading(1, 1, sure=False)
+    at = _most_usual(cells)
+    if at is None:
+        at = next((at for at in range(min(len(cells), DEEPEST)) if _heads(cells, at)), None)
+    if at is None:
+        return Heading(1, 1, sure=False)
+    first, last = _upwards(cells, at), _downwards(cells, at)
+    return Heading(first + 1, last - first + 1, sure=_sure(cells, at))
+
+
+def _most_usual(cells: Rows) -> int | None:
+    """The row with most usual names of columns; None where none has two."""
+    usual = [
+        len({cell for cell in row if cell and named(cell, COLUMNS)}) for row in cells[:DEEPEST]
+    ]
+    most = max(usual, default=0)
+    return usual.index(most) if most > 1 else None
+
+
+def _heads(cells: Rows, at: int) -> bool:
+    """Whether a row is filled as widely as those below it, and could be of headings."""
+    widths = [sum(1 for cell in row if cell) for row in cells[at:]]
+    below = [width for width in widths[1:] if width > 1][:20]
+    wide = widths[0] > 1 and not (below and widths[0] < FILLED * median(below))
+    return wide and _names(cells[at])
 
 
 def _named(cell: str) -> bool:
@@ -74,8 +89,7 @@ def _upwards(cells: Rows, at: int) -> int:
 
 
 def _downwards(cells: Rows, at: int) -> int:
-    """Last row of the headings: rows just below that leave the named columns blank, or that go on
-    with names and hold no count."""
+    """Last row of the headings: rows just below that go on with names and hold no count."""
     last = at
     while last + 1 < len(cells) and last - at + 1 < MOST_ROWS and _goes_on(cells, at, last + 1):
         last += 1
@@ -91,7 +105,9 @@ def _goes_on(cells: Rows, at: int, row: int) -> bool:
     """A row of counts could look like one of ages; then these must be those that follow on 0."""
     filled = [cell for cell in cells[row] if cell]
     digits = [int(cell) for cell in filled if cell.isdecimal() and not read_year(cell)]
-    return not cells[row][0] and _spans(cells[row]) and digits == list(range(len(digits)))
+    first = cells[row][0]
+    below = not first or named(first, COLUMNS)
+    return bool(below) and _spans(cells[row]) and digits == list(range(len(digits)))
 
 
 def _says(cell: str) -> bool:

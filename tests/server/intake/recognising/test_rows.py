@@ -14,6 +14,9 @@ TITLE = [("Deaths in Fenwold",), (), ("Source: civil register", "", "", "")]
         (LONG, 1, 1),
         (TITLE + LONG, 4, 1),
         ([("Printed on", "2024-01-01", "", ""), (), *LONG], 3, 1),
+        # commas in a title part it like a row of headings
+        ([("Table 4. Deaths by age", "Fenwold", "2019 to 2021"), *LONG], 2, 1),
+        ([("Deaths by sex", "all ages", "Fenwold", "final"), *LONG], 2, 1),
         ([("Table 3",), ("Area", "Sex", "0", "1-4"), ("North", "f", "4", "5")], 2, 1),
         ([("Area", "2010", "2011", "2012"), ("North", "4", "5", "5")], 1, 1),
         ([("", "2010", "2011"), ("0", "4", "5"), ("1-4", "4", "5")], 1, 1),
