@@ -11,7 +11,7 @@ from server.cli.options import Commands, add_command
 from server.config import Config
 from server.exports import csv
 from server.exports.table import Column, Row, Table
-from server.pages.cells import number
+from server.pages.cells import number, withheld
 from server.results.all_tables import Made, all_tables
 from server.results.questions import DEFAULT_SETTINGS
 from server.routes.asking import newest
@@ -19,6 +19,7 @@ from server.sentences.text import _, n_
 from server.store.heading import heading
 
 COLUMNS = ("mx", "ax", "qx", "lx", "dx", "Lx", "Tx", "ex")
+DECIMALS = 6
 
 
 def add(commands: Commands) -> None:
@@ -78,7 +79,7 @@ def _heads() -> tuple[Column, ...]:
         Column("year", _("year")),
         Column("status", _("status")),
         Column("age", _("age")),
-        *(Column(name, name, decimals=6) for name in COLUMNS),
+        *(Column(name, name, decimals=DECIMALS) for name in COLUMNS),
     )
 
 
@@ -88,6 +89,9 @@ def _rows(found: list[Made]) -> Iterator[Row]:
             if not made.readable[at]:
                 continue
             for x, age in enumerate(made.table.grid.labels):
-                values = (getattr(made.table, name)[at, x] for name in COLUMNS)
-                cells = (one.area, one.sex, one.period, made.status[at], age)
-                yield Row((*cells, *(number(float(value)) for value in values)))
+                values = (float(getattr(made.table, name)[at, x]) for name in COLUMNS)
+                if made.protected[at]:
+                    values = (round(value, DECIMALS) for value in values)
+                gone = made.withheld[at, x]
+                shown = (withheld() if gone else number(value) for value in values)
+                yield Row((one.area, one.sex, one.period, made.status[at], age, *shown))

@@ -14,6 +14,7 @@ from server.pages import frames
 from server.pages.choices import Grouped, Offer, offer
 from server.pages.choices import indicators as offered
 from server.pages.page import Caution, Frame, Page
+from server.pages.withholding import caution, charts_given, tables_given
 from server.results.comparison import Comparison, comparison
 from server.results.explaining import decomposable
 from server.results.questions import (
@@ -92,7 +93,10 @@ def build(session: Session, heading: Heading, question: ComparisonQuestion) -> C
 
 def _charts(found: Comparison, source: str) -> tuple[Chart, ...]:
     made = (charts.survivors, charts.asked_for, charts.life_expectancy, charts.unevenness)
-    return tuple(chart for chart in (draw(found, source) for draw in made) if chart is not None)
+    drawn = (draw(found, source) for draw in made)
+    return charts_given(
+        (chart for chart in drawn if chart is not None), found.this.loaded, found.that.loaded
+    )
 
 
 def _tables(found: Comparison) -> tuple[Table, ...]:
@@ -101,7 +105,7 @@ def _tables(found: Comparison) -> tuple[Table, ...]:
         made += [contributions.groups(found), contributions.ages(found)]
     if kinds.told(found.explained.kinds) and not found.same:
         made.append(contributions.kinds(found))
-    return (*made, tables.survivors(found))
+    return tables_given((*made, tables.survivors(found)), found.this.loaded, found.that.loaded)
 
 
 def _frame(found: Comparison) -> Frame:
@@ -213,6 +217,7 @@ def _cautions(found: Comparison) -> tuple[Caution, ...]:
     modelled = found.settings.open_interval != "one_over_m"
     return frames.cautions(
         beside=[
+            caution(found.this.loaded, found.that.loaded),
             basis.provisional(sorted(provisional)),
             of_breaks.lies_between(
                 found.holdings.parted(*_outer(found), found.this.of.area, found.that.of.area),

@@ -8,8 +8,8 @@ from engine.indicators import find
 from server.charts.chart import At, Chart, Series
 from server.charts.scales import decimals as decimals_of
 from server.charts.scales import ticks
-from server.pages.comparison_contributions import Printed, printed
-from server.pages.comparison_tables import RADIX, pair
+from server.pages.comparison_contributions import Printed, printed, whole_group_withheld
+from server.pages.comparison_tables import RADIX, gone, pair
 from server.pages.drawing import LONGER_LIFE, WHOLE_LIFE, at_age, places, values
 from server.results.comparison import Comparison, Side
 from server.results.explaining import DECOMPOSED, Contribution
@@ -84,7 +84,8 @@ def _curve(
     """The higher curve is named to its right, the lower one to its left."""
     table, other = side.table, (found.that if side is found.this else found.this).table
     starts = np.array(table.grid.starts, float)
-    inside = starts <= top
+    own = [found.grid.has(int(start)) and gone(found, side, int(start)) for start in starts]
+    inside = (starts <= top) & ~np.array(own, np.bool_)
     upper = table.ex[0] > other.ex[0] or (table.ex[0] == other.ex[0] and side is found.this)
     age = 82.0 if upper else 62.0
     height = RADIX * at_age(table.grid, table.lx, age)
@@ -221,9 +222,13 @@ def _bars(
     groups, (_first, top) = found.groups, axis(found)
     widths = np.append(groups.widths[:-1], min(10.0, top - groups.open_age))
     mids = np.array(groups.starts, float) + widths / 2
-    y, low, high = (of.scale * column for column in (part.by_group, part.low, part.high))
-    bottom = min(0.0, float(np.nanmin(np.fmin(y, low))))
-    ceiling = max(0.0, float(np.nanmax(np.fmax(y, high))))
+    missing = whole_group_withheld(found)
+    y, low, high = (
+        np.where(missing, np.nan, of.scale * column)
+        for column in (part.by_group, part.low, part.high)
+    )
+    ends = np.concatenate([[0.0], y, low, high])
+    bottom, ceiling = float(np.nanmin(ends)), float(np.nanmax(ends))
     room = 0.06 * (ceiling - bottom)
     shown = ticks(bottom, ceiling)
     return Chart(
@@ -260,6 +265,7 @@ def _bars(
         foot_row=tuple(
             (float(mid), number(float(value), of.decimals, signed=True))
             for mid, value in zip(mids, y, strict=True)
+            if np.isfinite(value)
         ),
-        foot_sum=number(float(y.sum()), of.decimals, signed=True),
+        foot_sum=number(of.scale * float(part.by_group.sum()), of.decimals, signed=True),
     )

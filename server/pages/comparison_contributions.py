@@ -4,11 +4,12 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from engine.ages import Array
 from engine.indicators import find
 from server.exports.table import Cell, Column, Row, Table
-from server.pages.cells import columns, gap, number, triple
+from server.pages.cells import columns, gap, number, triple, withheld
 from server.results.comparison import Comparison
 from server.results.explaining import DECOMPOSED, Contribution, decomposable
 from server.sentences import contributions as say
@@ -67,10 +68,18 @@ def groups(found: Comparison) -> Table:
     )
 
 
+def whole_group_withheld(found: Comparison) -> NDArray[np.bool_]:
+    """Groups of the picture in which every age of the grid is withheld on a side, [group]."""
+    shown_ages = (~found.withheld).astype(float)
+    return np.asarray(found.grid.regroup(shown_ages, found.groups) == 0)
+
+
 def _triple(found: Comparison, one: Printed, at: int) -> Iterable[Cell]:
     part = _part(found, one)
     if part is None:
         return [_missing(found, one)] * 3
+    if whole_group_withheld(found)[at]:
+        return [withheld()] * 3
     values = (float(column[at]) for column in (part.by_group, part.low, part.high))
     why = _("too few deaths, or lost in the simulation")
     return [number(one.scale * value, why) for value in values]
@@ -152,8 +161,8 @@ def ages(found: Comparison) -> Table:
     all years between are held, those along the path through them."""
     made = list(_columns(found))
     rows = [
-        Row((label, *(_one(found, column, at) for column in made)))
-        for at, label in enumerate(found.grid.labels)
+        Row((label, *(withheld() if gone else _one(found, column, at) for column in made)))
+        for at, (label, gone) in enumerate(zip(found.grid.labels, found.withheld, strict=True))
     ]
     words = _remainder_words(found)
     if words:

@@ -2,11 +2,13 @@
 
 from collections.abc import Sequence
 
+import numpy as np
+
 from engine.estimates import Reason
 from engine.indicators import GROUPS, find
 from engine.settings import span
-from server.exports.table import Cell, Column, Row, Table
-from server.pages.cells import columns, number, triple
+from server.exports.table import Cell, Column, Gap, Row, Table
+from server.pages.cells import columns, number, triple, withheld
 from server.pages.population_year_tables import about, called, what_it_counts, why_missing
 from server.results.comparison import Comparison, Side
 from server.results.estimating import COMPARED, USUAL
@@ -97,6 +99,11 @@ def _figure_row(found: Comparison, key: str) -> Row:
     )
 
 
+def gone(found: Comparison, side: Side, age: int) -> bool:
+    """Whether the deaths at an age of the grid are withheld on this side."""
+    return bool(side.loaded.withheld_on(found.grid)[found.grid.position(age)])
+
+
 def survivors(found: Comparison) -> Table:
     """Survivors of 100,000 born on both sides, at the starts of the groups."""
     both = pair(found)
@@ -109,6 +116,11 @@ def survivors(found: Comparison) -> Table:
     rows = []
     for age in found.groups.starts:
         at = found.this.table.grid.position(age)
-        here, there = (RADIX * float(side.table.lx[at]) for side in (found.this, found.that))
-        rows.append(Row((age, number(here), number(there), number(here - there))))
+        here, there = (
+            np.nan if gone(found, side, age) else RADIX * float(side.table.lx[at])
+            for side in (found.this, found.that)
+        )
+        cells = [number(one) for one in (here, there, here - there)]
+        some = any(gone(found, side, age) for side in (found.this, found.that))
+        rows.append(Row((age, *(withheld() if some and isinstance(c, Gap) else c for c in cells))))
     return Table("survivors", _("Survivors to each age, of 100,000 born"), heads, tuple(rows))

@@ -14,6 +14,7 @@ from server.pages import curves_tables as tables
 from server.pages import frames
 from server.pages.choices import Choice, choice
 from server.pages.page import Caution, Frame, Page
+from server.pages.withholding import caution, charts_given, tables_given
 from server.results.curves import Curves, curves, enough_lived
 from server.results.laws import rivals
 from server.results.questions import (
@@ -77,7 +78,7 @@ def build(session: Session, heading: Heading, question: CurvesQuestion) -> Curve
 
 def _charts(found: Curves, source: str) -> tuple[Chart, ...]:
     made = (charts.rates(found, source), charts.residuals(found, source))
-    return tuple(chart for chart in made if chart is not None)
+    return charts_given((chart for chart in made if chart is not None), found.loaded)
 
 
 def _tables(found: Curves) -> tuple[Table, ...]:
@@ -88,7 +89,8 @@ def _tables(found: Curves) -> tuple[Table, ...]:
         tables.single(found),
         tables.relation(found.related),
     )
-    return tuple(table for table in made if table is not None and table.rows)
+    filled = (table for table in made if table is not None and table.rows)
+    return tables_given(filled, found.loaded)
 
 
 def _answer(found: Curves) -> Sentence:
@@ -184,6 +186,7 @@ def _cautions(found: Curves) -> tuple[Caution, ...]:
     joined = zip(panel.grid.labels, found.chain.rates.joined, strict=True)
     return frames.cautions(
         beside=[
+            caution(found.loaded),
             basis.provisional(provisional),
             basis.few_person_years(float(panel.exposure.sum()), found.settings),
         ],

@@ -1,6 +1,7 @@
 """Pictures of a page of curves: the rates with curves through them, and what a law misses."""
 
 import numpy as np
+from numpy.typing import NDArray
 from scipy.special import ndtri
 
 from engine.ages import Array
@@ -20,7 +21,7 @@ def rates(found: Curves, source: str) -> Chart | None:
     """Observed rates, the smooth curve with its band, and the best law."""
     grid = found.panel.grid
     mx = found.chain.rates.mx[:-1]
-    observed = np.where(mx > 0, THOUSAND * mx, np.nan)
+    observed = np.where((mx > 0) & ~found.withheld[:-1], THOUSAND * mx, np.nan)
     inside = grid.mids[:-1] < ages(grid)[1]
     if not np.isfinite(observed[inside]).any():
         return None
@@ -156,18 +157,19 @@ def _law(found: Curves, best: Fitted) -> Series:
 
 def residuals(found: Curves, source: str) -> Chart | None:
     """How far each age group lies from the best law, upwards and downwards."""
-    if found.best is None:
+    if found.best is None or found.withheld[:-1].all():
         return None
     grid, fit = found.panel.grid, found.best.fit
     far, first = fit.residuals, len(grid) - 1 - fit.deaths.shape[-1]
     reach = float(ndtri((1 + found.settings.level) / 2))
     placed = np.concatenate([np.full(first, np.nan), far])
+    shown = ~found.withheld[first:-1]
     most = 1.1 * max(float(np.abs(far).max()), 1.2 * reach)
     sides = [
         bars(grid, placed, (first + np.flatnonzero(side)).tolist(), label)
         for side, label in (
-            (far >= 0, _("more deaths than the law expects")),
-            (far < 0, _("fewer deaths than the law expects")),
+            ((far >= 0) & shown, _("more deaths than the law expects")),
+            ((far < 0) & shown, _("fewer deaths than the law expects")),
         )
         if side.any()
     ]
@@ -186,7 +188,7 @@ def residuals(found: Curves, source: str) -> Chart | None:
     ]
     return Chart(
         key="residuals",
-        finding=_farthest(found.best, grid.labels[first:-1]),
+        finding=_farthest(found.best, grid.labels[first:-1], shown),
         unit=_(
             "Distance of the deaths in each age group from those that the law of {law} expects, in"
             " units of what chance does (deviance residuals); above 0 more died than it expects",
@@ -210,13 +212,13 @@ def residuals(found: Curves, source: str) -> Chart | None:
     )
 
 
-def _farthest(best: Fitted, labels: tuple[str, ...]) -> str:
-    """Clear where it lies beyond what the level allows any of so many groups.
+def _farthest(best: Fitted, labels: tuple[str, ...], shown: NDArray[np.bool_]) -> str:
+    """Of the groups shown. Clear where it lies beyond what the level allows any of so many groups.
 
     Source: Sidak (1967), Journal of the American Statistical Association 62, 626-633.
     """
     fit = best.fit
-    at = int(np.argmax(np.abs(fit.residuals)))
+    at = int(np.argmax(np.where(shown, np.abs(fit.residuals), -1.0)))
     each = best.level ** (1 / len(fit.residuals))
     more = float(fit.deaths[at] - fit.exposure[at] * fit.rates[at])
     clear = bool(abs(fit.residuals[at]) > ndtri((1 + each) / 2))

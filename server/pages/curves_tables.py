@@ -1,11 +1,12 @@
 """The tables of a page of curves, from which its pictures and twins are made too."""
 
 import numpy as np
+from numpy.typing import NDArray
 
 from engine.ages import Array
 from engine.laws import Fit
 from server.exports.table import Cell, Column, Row, Table
-from server.pages.cells import columns, count, number
+from server.pages.cells import columns, count, number, withheld
 from server.results.curves import Curves, Related, Single
 from server.results.laws import Fitted
 from server.sentences import names
@@ -19,7 +20,7 @@ def curves(found: Curves) -> Table:
     grid, rates = found.panel.grid, found.chain.rates
     heads = (
         Column("age", _("age")),
-        Column("deaths", _("deaths"), decimals=0),
+        Column("deaths", _("deaths"), decimals=0, counted=True),
         Column("counted", _("as counted"), _("per 1,000"), 3),
         *columns("smooth", _("smooth curve"), 3, unit=_("P-spline, per 1,000")),
         Column("graduated", _("graduated"), _("Whittaker-Henderson, per 1,000"), 3),
@@ -30,8 +31,8 @@ def curves(found: Curves) -> Table:
         Row(
             (
                 grid.labels[at],
-                count(float(found.panel.deaths[at])),
-                count(THOUSAND * float(rates.mx[at])),
+                withheld() if found.withheld[at] else count(float(found.panel.deaths[at])),
+                withheld() if found.withheld[at] else count(THOUSAND * float(rates.mx[at])),
                 *(number(THOUSAND * float(part[at]), _not_smooth(found)) for part in smooth),
                 number(THOUSAND * float(graduated[at]), _not_graduated(found)),
                 number(THOUSAND * float(law[at]), _no_law(found)),
@@ -101,15 +102,17 @@ def residuals(found: Curves) -> Table | None:
     expected = fit.exposure * fit.rates
     heads = (
         Column("age", _("age")),
-        Column("deaths", _("deaths"), decimals=0),
+        Column("deaths", _("deaths"), decimals=0, counted=True),
         Column("expected", _("expected"), _("by the law"), 1),
         Column("more", _("more deaths"), _("than expected"), 1, signed=True),
         Column("residual", _("distance"), _("deviance residual"), 2, signed=True),
     )
     rows = tuple(
-        Row((label, count(float(deaths)), float(mean), float(deaths - mean), float(far)))
-        for label, deaths, mean, far in zip(
-            labels, fit.deaths, expected, fit.residuals, strict=True
+        Row((label, withheld(), float(mean), withheld(), withheld()))
+        if gone
+        else Row((label, count(float(deaths)), float(mean), float(deaths - mean), float(far)))
+        for label, deaths, mean, far, gone in zip(
+            labels, fit.deaths, expected, fit.residuals, _of_fit(found, len(labels)), strict=True
         )
     )
     title = _(
@@ -120,6 +123,11 @@ def residuals(found: Curves) -> Table | None:
         " lie beyond 2."
     )
     return Table("residuals", title, heads, rows, note)
+
+
+def _of_fit(found: Curves, ages: int) -> NDArray[np.bool_]:
+    """Which of the closed groups a law was fitted to, the last so many, are withheld."""
+    return found.withheld[:-1][-ages:]
 
 
 def laws(found: Curves) -> Table:

@@ -21,7 +21,7 @@ from server.results.questions import (
     address,
 )
 from server.results.series import Series, series
-from server.sentences import basis, kinds, names
+from server.sentences import basis, kinds, names, withholding
 from server.sentences import breaks as of_breaks
 from server.sentences import trend as say
 from server.sentences.pieces import Piece, Sentence, phrase
@@ -199,8 +199,10 @@ def _cautions(found: Series) -> tuple[Caution, ...]:
         if not found.indicator.needs.whole
         and tables.widest(found.estimate, line) > abs(float(found.change.value[line]))
     ]
+    protected = [_who(found, line) for line, some in enumerate(found.protected) if any(some)]
     return frames.cautions(
         beside=[
+            withholding.behind(protected),
             basis.provisional(sorted(provisional)),
             basis.pooled(found.settings),
             basis.smoothed(found.settings),

@@ -4,6 +4,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from engine import bulk, indicators
 from engine import settings as named
@@ -12,7 +13,7 @@ from engine.estimates import Reason
 from engine.panel import Panel
 from engine.tables import LifeTable
 from server.results.holdings import holdings
-from server.results.loading import Beside, Found, load
+from server.results.loading import Beside, Found, Loaded, load
 from server.results.questions import PopulationYear
 from server.store.connect import Session
 
@@ -25,13 +26,23 @@ class Made:
     status: tuple[str, ...]
     table: LifeTable
     readable: tuple[bool, ...]  # whether life expectancy at birth may be given
+    withheld: NDArray[np.bool_]  # [population-year, age]: the deaths are
+    protected: tuple[bool, ...]  # something it rests on is withheld
     version: str  # of the engine that made them
 
 
-def all_tables(session: Session, collection: str, number: int, settings: str) -> Iterator[Made]:
+def all_tables(
+    session: Session,
+    collection: str,
+    number: int,
+    settings: str,
+    *,
+    figures: str = "released",
+) -> Iterator[Made]:
     """All areas, sexes and years, grid by grid, each in the order of its codes."""
     chosen, held = named.find(settings), holdings(session, collection, number)
-    loaded = load(session, collection, number, held.status, Beside.of(chosen, held.areas))
+    beside = Beside.of(chosen, held.areas)
+    loaded = load(session, collection, number, held.status, beside, figures=figures)
     expectancy = indicators.find("e0")
     for ones in _by_grid(held.status, loaded):
         panel = Panel.stack([loaded[one].panel for one in ones])
@@ -42,8 +53,17 @@ def all_tables(session: Session, collection: str, number: int, settings: str) ->
             tuple(loaded[one].status for one in ones),
             made.table,
             tuple(bool(one) for one in np.isin(reasons, (Reason.NONE, Reason.NO_DEATHS))),
+            np.stack([_withheld(loaded[one], made.table.grid) for one in ones]),
+            tuple(loaded[one].protected for one in ones),
             made.version,
         )
+
+
+def _withheld(of: Loaded, grid: AgeGrid) -> NDArray[np.bool_]:
+    """On the ages of the table; single ages that a law spreads the open group over are none."""
+    own = of.withheld_on(of.panel.grid)
+    counted = len(own) if len(grid) == len(own) else len(own) - 1
+    return np.append(own[:counted], np.zeros(len(grid) - counted, np.bool_))
 
 
 def _by_grid(

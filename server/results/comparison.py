@@ -5,6 +5,7 @@ from dataclasses import dataclass, replace
 from functools import reduce
 
 import numpy as np
+from numpy.typing import NDArray
 
 from engine import decomposition, indicators
 from engine import settings as named
@@ -18,7 +19,7 @@ from server.results.estimating import COMPARED, differences, estimates, stream
 from server.results.explaining import Explained, Sides, explain
 from server.results.holdings import Holdings, holdings
 from server.results.loading import Beside, Found, Loaded, Shared, load, overlap, shared_part
-from server.results.protecting import all_protected
+from server.results.protecting import all_protected, withheld_in
 from server.results.questions import ComparisonQuestion, PopulationYear
 from server.results.revision import Moved, moved
 from server.store.connect import Session
@@ -66,6 +67,11 @@ class Comparison:
     def mixed(self, side: Side) -> tuple[Break, ...]:
         """The breaks on both sides of which the years added up for a side lie."""
         return self.holdings.mixed(side.of, self.settings.years)
+
+    @property
+    def withheld(self) -> NDArray[np.bool_]:
+        """Groups of the grid in which a side withholds deaths, [age]."""
+        return withheld_in(self.grid, self.this.loaded, self.that.loaded)
 
     @property
     def regrouped(self) -> tuple[PopulationYear, ...]:

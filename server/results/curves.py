@@ -95,6 +95,11 @@ class Curves:
         return self.question.of
 
     @property
+    def withheld(self) -> NDArray[np.bool_]:
+        """Groups whose deaths are withheld, [age]."""
+        return self.loaded.withheld_on(self.panel.grid)
+
+    @property
     def panel(self) -> Panel:
         return self.loaded.panel
 

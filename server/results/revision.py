@@ -42,7 +42,5 @@ def moved(
     newer = editions.find(session, heading.collection.code, heading.newest)
     if newer is None:
         return None
-    held = load(
-        session, heading.collection.code, newer.number, wanted, beside, figures=figures
-    )
+    held = load(session, heading.collection.code, newer.number, wanted, beside, figures=figures)
     return Moved(newer.number, newer.made, headline(held))

@@ -51,6 +51,7 @@ class Series:
     lines: tuple[tuple[str, str], ...]  # in the tree order of their areas
     periods: tuple[str, ...]
     estimate: Estimate
+    protected: tuple[tuple[bool, ...], ...]  # [line][period]: counts behind it are withheld
     status: tuple[tuple[str, ...], ...]  # [line][period]: final, provisional; "" where not held
     open_ages: tuple[tuple[int | None, ...], ...]  # [line][period]: where the table ends
     courses: tuple[Course, ...]  # [line]: of the newest years that no break parts
@@ -158,6 +159,7 @@ def series(
         lines=lines,
         periods=periods,
         estimate=estimate,
+        protected=_rows([one is not None and one.protected for one in found], len(periods)),
         status=_rows([one.status if one else "" for one in found], len(periods)),
         open_ages=_rows([one.panel.grid.open_age if one else None for one in found], len(periods)),
         courses=tuple(told[: len(lines)]),

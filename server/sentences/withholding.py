@@ -32,3 +32,15 @@ def withheld(ages: Sequence[str]) -> Told:
             " off, and no further decimals of them are given."
         ),
     )
+
+
+def behind(who: Sequence[str]) -> Told:
+    """A caution beside many figures, some of which rest on withheld counts."""
+    if not who:
+        return None
+    return _("Withheld"), _(
+        "Some counts behind the figures of {who} are withheld, since they are very small."
+        " Estimates from what is shown stand in for them, so these figures may be a little off,"
+        " and no further decimals of them are given.",
+        who=listed(who, most=MOST),
+    )
