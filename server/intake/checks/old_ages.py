@@ -18,7 +18,7 @@ from server.intake.problems import Fault, Value
 from server.intake.rated import Rated, rated
 
 OLD = 60  # from here on death rates rise with every year of age, everywhere
-FALLS = 2.5  # standard deviations below no rise at all
+FALLS = 2.8  # standard deviations below no rise at all
 SPIKE, ROUND_FROM = 0.05, 40
 MIDDLE, OLDEST = (60, 80), 85
 CROSSES = (1.10, 0.95)  # higher than the other in the middle ages, lower at the oldest
@@ -68,7 +68,8 @@ def _spikes(ledger: Ledger) -> Iterator[Fault]:
             continue
         with np.errstate(all="ignore"):
             log = np.log(one.rates)
-            over = log[:, at] - (log[:, at - 1] + log[:, at + 1]) / 2
+            usual = np.exp((log[:, at - 1] + log[:, at + 1]) / 2)
+            over = log[:, at] - np.log(usual)
             spread = np.sqrt(
                 1 / one.deaths[:, at] + (1 / one.deaths[:, at - 1] + 1 / one.deaths[:, at + 1]) / 4
             )
@@ -76,7 +77,6 @@ def _spikes(ledger: Ledger) -> Iterator[Fault]:
             np.minimum(one.deaths[:, at - 1], one.deaths[:, at + 1]), one.deaths[:, at]
         )
         spikes = (enough >= FEW) & (over > SPIKE) & (over > SURE * spread)
-        usual = np.exp(log[:, at] - over)
 
         def fault(number: int, one: Rated = one, ages: Ints = at, usual: Array = usual) -> Fault:
             line, column = divmod(number, len(ages))

@@ -1,26 +1,30 @@
 """Checks for numbers that stand twice: a year repeated, rows copied from another area, sex or year.
 
-Equal numbers prove little where they are small. How unlikely it is that a count v is met again by
-chance is taken as that of a Poisson law at its middle, 1 / sqrt(4 pi v); a repetition is told where
-all of its numbers together would come about once in 10,000 uploads of this size.
+Equal numbers prove little where they are small, or lie on a smooth line. How unlikely it is that a
+count v is met again by chance is taken as at most that of a Poisson law at its middle, one over
+sqrt(4 pi v); a repetition is told where its numbers together would come about once in 10,000
+uploads of this size.
 """
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import reduce
+from typing import TypeVar
 
 import numpy as np
 
 from engine.ages import Array
-from server.intake.cells import YEARS, Flags, Ints
-from server.intake.checks.check import Check
+from server.intake.cells import YEARS, Ints
+from server.intake.checks.check import Check, several
 from server.intake.checks.series import years_worded
 from server.intake.courses import courses
 from server.intake.ledger import Ledger
 from server.intake.problems import Fault, Value
-from server.intake.rated import rated, unsummed
+from server.intake.rated import Rated, rated, unsummed
 from server.intake.schedules import Block
 
 AIM = np.log(1e4)
+Counts = TypeVar("Counts", Array, Ints)
 WINDOWS = (5, 10)  # age groups in a row that are looked for elsewhere
 MEASURES = ("deaths", "person_years")
 
@@ -43,14 +47,15 @@ def _marks(values: Array, seed: int) -> Ints:
 
 def _proof(values: Array, unit: float) -> Array:
     """How unlikely it is that these counts are met again by chance, as a logarithm: [..., age] ->
-    [...]. At most ten or so are taken together before the logarithm, which is dear."""
-    several = np.maximum(values / unit, 1 / (4 * np.pi)).prod(axis=-1)
-    return np.asarray(0.5 * (np.log(several) + values.shape[-1] * np.log(4 * np.pi)))
-
-
-def _sum_of_proofs(values: Array, unit: float) -> float:
-    """The same of one line of any length."""
-    return float(_proof(values[:, None], unit).sum())
+    [...]. Populations run smoothly over ages, and smooth lines meet: so what counts is the level,
+    the slope, and how far each count lies off the middle of its neighbours, none of them for more
+    than a Poisson count would."""
+    counts = values / unit
+    chance = np.sqrt(4 * np.pi * np.maximum(counts, 1 / (4 * np.pi)))
+    off = np.abs(counts[..., 1:-1] - (counts[..., :-2] + counts[..., 2:]) / 2)
+    rough = np.log(np.minimum(1 + 2 * off, chance[..., 1:-1])).sum(axis=-1)
+    slope = np.minimum(1 + np.abs(counts[..., -1] - counts[..., 0]), chance[..., -1])
+    return np.asarray(rough + np.log(slope) + np.log(chance[..., 0]))
 
 
 def _unit(values: Array) -> float:
@@ -74,23 +79,30 @@ def _pairs(keys: Ints, order: Ints) -> Twice:
 def _repeated_years(ledger: Ledger) -> Iterator[Fault]:
     """Years whose numbers are those of another year of the area and sex, at every age."""
     for measure in MEASURES:
-        for course in courses(ledger, measure):
-            ages = course.values[:, 1:]
+        for block, place, ages, own in _lines(ledger, measure):
             marks = _marks(ages, 1).sum(axis=-1)
-            series = course.place // YEARS
             if len(np.unique(marks)) == len(marks):
                 continue
-            twice = _pairs(marks * 1_000_003 + series, np.lexsort((course.place, marks, series)))
+            series = place // YEARS
+            twice = _pairs(marks * 1_000_003 + series, np.lexsort((place, marks, series)))
             least = AIM + np.log(max(len(marks), 2))
-            unit = _unit(course.block.values)
+            unit = _unit(block.values)
             for line, same in _by_first(twice):
-                own = course.own[np.append(line, same)]
-                known = np.isfinite(ages[same]).all() and (own >= 0).any()
-                if known and _sum_of_proofs(ages[same], unit) > least:
-                    own = own[own >= 0]
-                    yield _repeated(
-                        ledger, course.block, own, course.place[line], course.place[same]
-                    )
+                here = own[np.append(line, same)]
+                known = np.isfinite(ages[same]).all() and (here >= 0).any()
+                if known and _proof(ages[same], unit) > least:
+                    yield _repeated(ledger, block, here[here >= 0], place[line], place[same])
+
+
+def _lines(ledger: Ledger, measure: str) -> Iterator[tuple[Block, Ints, Array, Ints]]:
+    """Block, and among what stands: place, counts by age, and line of the block, -1 where it only
+    stands."""
+    if not ledger.past:
+        for block in ledger.of(measure):
+            yield block, block.place, block.values, np.arange(len(block.place))
+        return
+    for course in courses(ledger, measure):
+        yield course.block, course.place, course.values[:, 1:], course.own
 
 
 def _by_first(twice: Twice) -> Iterator[tuple[Ints, int]]:
@@ -113,19 +125,22 @@ def _repeated_rates(ledger: Ledger) -> Iterator[Fault]:
         with np.errstate(all="ignore"):
             whole = np.where(one.people > 0, one.rates, 0.0).sum(axis=-1)
         order = np.lexsort((whole, one.place // YEARS))
-        before, after = order[:-1], order[1:]
-        close = (one.place[before] // YEARS == one.place[after] // YEARS) & (
-            np.abs(whole[after] - whole[before]) <= 1e-8 * whole[after]
+        near = (one.place[order[:-1]] // YEARS == one.place[order[1:]] // YEARS) & (
+            np.abs(np.diff(whole[order])) <= 1e-8 * whole[order[1:]]
         )
-        for a, b in zip(before[close].tolist(), after[close].tolist(), strict=True):
-            first, second = sorted((a, b))
-            met = one.deaths[first] > 0
-            alike = np.abs(one.rates[first] - one.rates[second]) <= 1e-7 * one.rates[first]
-            differ = (one.people[first] != one.people[second]).any()
-            enough = _sum_of_proofs(one.deaths[first], 1.0) > AIM + np.log(len(whole))
-            if differ and enough and (alike | ~met).all() and met.any():
-                values: dict[str, Value] = {"same": str(int(one.place[first]) % YEARS)}
-                yield one.fault(ledger, second, 0, values)
+        both = np.sort(np.stack([order[:-1][near], order[1:][near]]), axis=0)
+        first, second = both[0], both[1]
+        with np.errstate(invalid="ignore"):
+            apart = np.abs(one.rates[first] - one.rates[second]) > 1e-7 * one.rates[first]
+        alike = ~(apart & (one.deaths[first] > 0)).any(axis=-1)
+        differ = (one.people[first] != one.people[second]).any(axis=-1)
+        enough = _proof(one.deaths[first], 1.0) > AIM + np.log(max(len(whole), 2))
+
+        def fault(at: int, one: Rated = one, first: Ints = first, second: Ints = second) -> Fault:
+            values: dict[str, Value] = {"same": str(int(one.place[first[at]]) % YEARS)}
+            return one.fault(ledger, int(second[at]), 0, values)
+
+        yield from several(np.flatnonzero(alike & differ & enough), fault)
 
 
 def _copied(ledger: Ledger) -> Iterator[Fault]:
@@ -140,43 +155,50 @@ def _copied(ledger: Ledger) -> Iterator[Fault]:
 def _copies(ledger: Ledger, block: Block, lines: Ints) -> Iterator[Fault]:
     values = block.values if len(lines) == len(block.place) else block.values[lines]
     marks, unit = _marks(values, 2), _unit(values)
-    told: set[tuple[int, int]] = set()
-    for width in WINDOWS:
-        many = values.shape[-1] // width
-        if not many:
-            continue
-        cut = (len(lines), many, width)
-        keys = marks[:, : many * width].reshape(cut).sum(axis=-1).ravel()
-        sure = _proof(values[:, : many * width].reshape(cut), unit).ravel()
-        at = np.flatnonzero(sure > AIM + 2 * np.log(max(len(keys), 2)) - np.log(2))
-        ordered = np.sort(keys[at])
-        if not (ordered[1:] == ordered[:-1]).any():
-            continue
-        twice = _pairs(keys[at], np.lexsort((at, keys[at])))
-        for line, same in zip(
-            (at[twice.line] // many).tolist(), (at[twice.same] // many).tolist(), strict=True
-        ):
-            pair = (int(lines[line]), int(lines[same]))
-            equal = values[line] == values[same]
-            whole_year = (
-                equal.all() and block.place[pair[0]] // YEARS == block.place[pair[1]] // YEARS
-            )
-            if pair not in told and not whole_year:
-                told.add(pair)
-                yield _copy(ledger, block, *pair, equal & (values[line] > 0))
+    pairs = [_met(values, marks, unit, width) for width in WINDOWS if width <= values.shape[-1]]
+    line, same = np.unique(np.concatenate(pairs, axis=-1), axis=-1)
+    series = block.place[lines] // YEARS
+    repeated = (values[line] == values[same]).all(axis=-1) & (series[line] == series[same])
+
+    def fault(at: int) -> Fault:
+        equal = (values[line[at]] == values[same[at]]) & (values[line[at]] > 0)
+        other = ledger.named(int(block.place[lines[same[at]]]))
+        ages, row = np.flatnonzero(equal), int(lines[line[at]])
+        found: dict[str, Value] = {
+            "ages": len(ages),
+            "first": block.grid.labels[int(ages[0])],
+            "other_area": other["area"],
+            "other_sex": other["sex"],
+            "other_year": other["year"],
+        }
+        return block.fault(block.row[row, ages], ledger.named(int(block.place[row])) | found)
+
+    yield from several(np.flatnonzero(~repeated), fault)
 
 
-def _copy(ledger: Ledger, block: Block, line: int, same: int, equal: Flags) -> Fault:
-    ages = np.flatnonzero(equal)
-    other = ledger.named(int(block.place[same]))
-    values: dict[str, Value] = {
-        "ages": len(ages),
-        "first": block.grid.labels[int(ages[0])],
-        "other_area": other["area"],
-        "other_sex": other["sex"],
-        "other_year": other["year"],
-    }
-    return block.fault(block.row[line, ages], ledger.named(int(block.place[line])) | values)
+def _met(values: Array, marks: Ints, unit: float, width: int) -> Ints:
+    """Lines, and the first ones with the same numbers in a window so wide, [two, pair]."""
+    many = values.shape[-1] // width
+    least = AIM + 2 * np.log(max(len(values) * many, 2)) - np.log(2)
+    large = (
+        width * unit * np.exp(2 * least / width) / (4 * np.pi)
+    )  # smaller counts prove too little
+    at = np.flatnonzero(_in_windows(values, width) > large)
+    keys = _in_windows(marks, width)[at]
+    ordered = np.sort(keys)
+    again = np.isin(keys, ordered[1:][ordered[1:] == ordered[:-1]])
+    at, keys = at[again], keys[again]
+    sure = _proof(values[:, : many * width].reshape(-1, width)[at], unit) > least
+    at, keys = at[sure], keys[sure]
+    twice = _pairs(keys, np.lexsort((at, keys)))
+    return np.stack([at[twice.line] // many, at[twice.same] // many])
+
+
+def _in_windows(of: Counts, width: int) -> Counts:
+    """Sums over so many ages in a row, one row of windows after the other: [window]."""
+    end = of.shape[-1] // width * width
+    parts = [of[:, start:end:width] for start in range(width)]
+    return reduce(np.add, parts).ravel()
 
 
 SOURCE = "Ebbline's own; how unlikely a repetition is by chance is a Poisson law's."
