@@ -30,21 +30,36 @@ if "NUMBA_CACHE_DIR" not in os.environ:
     _config.CACHE_DIR = str(Path(__file__).parent / "__pycache__" / _digest[:16])
 
 
+class _Apart(Compiler):
+    """Arrays that a function is given never overlap where it writes: no step is held back lest it
+    change what the next one reads, and loops over many of them are worked on by vectors."""
+
+    def define_pipelines(self) -> Any:
+        self.state.flags.noalias = True
+        pipelines: Any = super()
+        return pipelines.define_pipelines()
+
+
+def _made(function: Function, loosened: set[str]) -> Function:
+    kept: Any = numba.njit(
+        cache=True, error_model="numpy", fastmath=loosened or False, pipeline_class=_Apart
+    )
+    return cast(Function, kept(function))
+
+
 def compiled(function: Function) -> Function:
     """Every operation rounded as it is written, as numpy does, whatever function calls it."""
-    return cast(Function, numba.njit(cache=True, error_model="numpy", fastmath=False)(function))
+    return _made(function, set())
 
 
 def summing(function: Function) -> Function:
     """Sums in the order that is fastest; nothing else is loosened, and nan stays nan."""
-    kept: Any = numba.njit(cache=True, error_model="numpy", fastmath={"reassoc", "nsz"})
-    return cast(Function, kept(function))
+    return _made(function, {"reassoc", "nsz"})
 
 
 def fused(function: Function) -> Function:
     """A product and the sum it goes into are rounded once, together."""
-    kept: Any = numba.njit(cache=True, error_model="numpy", fastmath={"contract"})
-    return cast(Function, kept(function))
+    return _made(function, {"contract"})
 
 
 def aligned(*shape: int) -> Array:
@@ -53,22 +68,3 @@ def aligned(*shape: int) -> Array:
     room = np.zeros(size + 8)
     first = -room.ctypes.data % 64 // 8
     return room[first : first + size].reshape(shape)
-
-
-class _Apart(Compiler):
-    """Arrays that a function is given never overlap: no step is held back lest it change what the
-    next one reads."""
-
-    def define_pipelines(self) -> Any:
-        self.state.flags.noalias = True
-        pipelines: Any = super()
-        return pipelines.define_pipelines()
-
-
-def side_by_side(function: Function) -> Function:
-    """Its innermost loops are worked on several places at a time; a product and the sum it goes
-    into are rounded once. The arrays must not overlap."""
-    kept: Any = numba.njit(
-        cache=True, error_model="numpy", fastmath={"contract"}, pipeline_class=_Apart
-    )
-    return cast(Function, kept(function))

@@ -12,7 +12,7 @@ import numpy as np
 
 from engine.ages import Array
 from engine.compiled.cuts import Cuts, Pairs, cut, edge, uncut
-from engine.compiled.jit import aligned, fused, side_by_side
+from engine.compiled.jit import aligned, fused
 from engine.compiled.rules import Rules, by_infant_rate
 from engine.decomposition.straight import BESIDE_JUMP, NODES, WEIGHTS
 from engine.panel import Panel
@@ -190,7 +190,7 @@ def _add_slopes(rules: Rules, lines: Lines, places: Places) -> None:
         _add_bend(lines, 1, places)
 
 
-@side_by_side
+@fused
 def _early(pieces: Array, lines: Lines, group: int, places: Places) -> None:
     """ax of one of the first two groups, and its slope in m0."""
     for lane in range(LANES):
@@ -205,7 +205,7 @@ def _early(pieces: Array, lines: Lines, group: int, places: Places) -> None:
         )
 
 
-@side_by_side
+@fused
 def _down(
     rules: Rules,
     start: Array,
@@ -235,7 +235,7 @@ def _down(
             alive[lane] -= alive[lane] * q
 
 
-@side_by_side
+@fused
 def _close(
     start: Array, step: Array, t: Array, share: Array, alive: Array, left: Array, mean: Array
 ) -> None:
@@ -246,7 +246,7 @@ def _close(
         mean[lane] -= share[lane] * alive[lane] * left[lane] * left[lane]
 
 
-@side_by_side
+@fused
 def _up(
     rules: Rules, qx: Array, after: Array, drop: Array, mean: Array, left: Array, ahead: Array
 ) -> None:

@@ -86,15 +86,11 @@ def _limit(panel: Panel) -> Side:
 
 def _compiled(panel: Panel) -> Side:
     """Into columns that are there already, like the limit's."""
-    rows, ages = panel.deaths.shape
-    each = (kernel.TILE // ages // kernel.FOUR + 1) * kernel.FOUR
-    whole = rows // each * each
+    rows = len(panel.deaths)
     given = (panel.deaths, panel.exposure, panel.infant_weight, panel.infant_ratio)
-    found = kernel.Columns(*(np.zeros((rows, ages)) for _ in kernel.Columns._fields))
+    found = kernel.Columns(*(np.zeros(panel.deaths.shape) for _ in kernel.Columns._fields))
     numbers, chain = np.zeros((rows, len(kernel.NUMBERS))), rules(panel.grid, PLAIN)
-    return Side(
-        lambda: kernel._by_tiles(chain, each, given, found, numbers, slice(0, whole)), whole
-    )
+    return Side(lambda: kernel.fill(chain, *given, found, numbers), rows)
 
 
 def loops() -> list[Result]:
