@@ -48,6 +48,12 @@ class Cells:
     end: Ints  # last age, UNREADABLE where the label does not say
     open: Flags
     status: Ints  # 0 final, 1 provisional
+    areas: int  # how many areas the upload has
+
+    @property
+    def stated(self) -> Flags:
+        """Rows that say of which area and sex they are, if in a way that cannot be read."""
+        return (self.area < self.areas) & (self.sex < SEX_UNSTATED)
 
     @property
     def placed(self) -> Flags:
@@ -174,6 +180,7 @@ def cells(sheet: Sheet, codes: Sequence[str]) -> Cells:
         end=rows([UNREADABLE if age.end is None else age.end for age in ages], "age"),
         open=rows([int(age.open) for age in ages], "age").astype(bool),
         status=read("status", status, 0) | read("year", provisional, 0),
+        areas=len(codes),
     )
 
 

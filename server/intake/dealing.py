@@ -28,12 +28,6 @@ def in_units(counts: Array) -> Ints:
     return units
 
 
-def regrouped(units: Ints, grid: AgeGrid, to: AgeGrid) -> Ints:
-    """As `AgeGrid.regroup`, in whole numbers: [line, group]."""
-    sums: Ints = np.add.reduceat(units, [grid.position(start) for start in to.starts], axis=-1)
-    return sums
-
-
 def dealt(amounts: Ints, bins: Ints, weights: Ints) -> Ints:
     """What each cell gets of the amount of its bin, in proportion to its weight.
 
@@ -91,10 +85,10 @@ class Pool:
         np.add.at(sums, self.line, self.units)
         return sums[self.line]
 
-    def grid(self, cells: Flags, beside: AgeGrid) -> AgeGrid:
-        """The finest groups that the lines of these cells and another grid have in common."""
+    def grid(self, cells: Flags) -> AgeGrid:
+        """The finest groups that the lines of these cells have in common."""
         laid = zip(self.blocks, self.laid_out(cells), strict=True)
-        return reduce(AgeGrid.common, (block.grid for block, here in laid if here.any()), beside)
+        return reduce(AgeGrid.common, (block.grid for block, here in laid if here.any()))
 
     def laid_out(self, cells: NDArray[Kind]) -> list[NDArray[Kind]]:
         """Numbers of the cells in the form of the blocks, [line, age] each."""

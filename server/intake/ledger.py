@@ -16,6 +16,7 @@ from server.intake.schedules import Aside, Block
 from server.intake.standing import Standing
 
 Line = tuple[Block, int]  # a block and which of its lines
+Group = tuple[tuple[int, int], float]  # first and last age, and how many
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,6 +41,7 @@ class Ledger:
     elsewhere: bool  # the edition that stands has parts of the whole that are not handed in here
     age_totals: tuple[Aside, ...]
     ageless: tuple[Aside, ...]  # counts of unknown age
+    grouped: tuple[Aside, ...]  # counts by age whose area or sex is not known
     standing: Standing | None = None  # None: nothing is known of what stands
 
     @cached_property
@@ -63,6 +65,16 @@ class Ledger:
     def of_no_age(self) -> dict[str, dict[int, float]]:
         """Counts of unknown age, by measure and place."""
         return _by_place(self.ageless)
+
+    @cached_property
+    def by_age(self) -> dict[str, dict[int, list[Group]]]:
+        """Counts by age whose area or sex is not known, by measure and place."""
+        found: dict[str, dict[int, list[Group]]] = {}
+        for aside in self.grouped:
+            places = found.setdefault(aside.measure, {})
+            for place, count in zip(aside.place.tolist(), aside.values.tolist(), strict=True):
+                places.setdefault(place, []).append((aside.ages or (0, 0), count))
+        return found
 
     @cached_property
     def at_all_ages(self) -> dict[str, dict[int, float]]:

@@ -33,7 +33,7 @@ from server.intake.ledger import Ledger
 from server.intake.mapping import EVERY_ROLE, JANUARY, LISTS, ROLES, Mapping
 from server.intake.problems import Problem, errors_of
 from server.intake.rates import WorkedOut, worked_out
-from server.intake.schedules import RATE, Aside, Block, asides, blocks, ordered
+from server.intake.schedules import RATE, Aside, Block, asides, blocks, groups, ordered
 from server.intake.sharing import Unstated, settle
 from server.intake.sheets import Sheet, load
 from server.intake.standing import NOTHING_STANDS, Standing
@@ -85,6 +85,7 @@ class _Sorted:
     unplaced: bool
     age_totals: list[Aside]
     ageless: list[Aside]  # counts of unknown age
+    grouped: list[Aside]  # counts by age whose area or sex is not known
 
 
 def parse(handed: Sequence[Handed], standing: Standing | None = NOTHING_STANDS) -> Parsed:
@@ -231,7 +232,8 @@ def _sorted(read: Cells) -> _Sorted:
         spoiled=spoiled,
         unplaced=not read.placed.all(),
         age_totals=list(asides(read, read.placed & sound & (read.start == TOTAL))),
-        ageless=list(asides(read, read.placed & sound & (read.start == UNSTATED))),
+        ageless=list(asides(read, read.placed & sound & (read.start == UNSTATED), None)),
+        grouped=list(groups(rows, spoiled)),
     )
 
 
@@ -245,6 +247,7 @@ def _dated(part: _Sorted, mapping: Mapping) -> _Sorted:
         blocks=list(mean.blocks),
         age_totals=list(mean.asides),
         ageless=list(averaged((), part.ageless).asides),
+        grouped=list(averaged((), part.grouped).asides),
         problems=part.problems + derived.problems_of(mean.found),
     )
 
@@ -253,7 +256,8 @@ def _deaths_of_rates(
     ledger: Ledger, done: Sequence[_Sorted], handed: Sequence[Handed]
 ) -> WorkedOut:
     rates = [block for part in done for block in part.blocks if block.measure == RATE]
-    unknown = [aside for part in done for aside in part.ageless if aside.measure == RATE]
+    unstated_ones = (aside for part in done for aside in (*part.ageless, *part.grouped))
+    unknown = [aside for aside in unstated_ones if aside.measure == RATE]
     kind = next((file.mapping.rate_is for file in handed if file.role == "rates"), "")
     return worked_out(ledger, rates, unknown, kind)
 
@@ -278,6 +282,7 @@ def _ledger(
         unplaced=unplaced,
         age_totals=tuple(one for part in done for one in part.age_totals if one.measure != RATE),
         ageless=tuple(one for part in done for one in part.ageless if one.measure != RATE),
+        grouped=tuple(one for part in done for one in part.grouped if one.measure != RATE),
         standing=standing,
     )
 

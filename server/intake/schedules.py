@@ -12,6 +12,7 @@ from server.intake.mapping import Mapping as FileMapping
 from server.intake.problems import Fault, Value
 
 MEASURES = {field: field for field in NUMBERS} | {"population": "person_years"}
+OLDEST = 999  # beyond every age: the end of what is open
 DECIMALS = 6  # counts are rounded to them
 RATE = "rate"  # no measure of the store: becomes deaths
 
@@ -26,6 +27,7 @@ class Ordered:
     start: Ints
     end: Ints  # last age of the group as labelled, -1 where the label does not say
     open: Flags
+    stated: Flags  # area and sex; of others, ages may be left out where there is nobody
     first: Flags  # first row of its place
     last: Flags
     broken: Flags  # its place has rows whose age cannot be read
@@ -114,7 +116,8 @@ class Block:
 
 @dataclass(frozen=True, slots=True)
 class Aside:
-    """Numbers of one measure that are of no one age: totals over the ages, or of unknown age."""
+    """Numbers of one measure that make up no vector: totals over the ages, counts of unknown age,
+    and those of one age group of which area or sex are not known."""
 
     measure: str
     file: str
@@ -124,6 +127,7 @@ class Aside:
     values: Array
     row: Ints
     rule: Rule
+    ages: tuple[int, int] | None  # first and last, OLDEST where it is open; None: not known
 
     def once(self) -> "Aside":
         """The first line of each place; a second is a fault."""
@@ -165,9 +169,9 @@ def ordered(cells: Cells, sound: Flags) -> Ordered:
         take, place, start = take[order], place[order], start[order]
     change = place[1:] != place[:-1]
     last = np.append(change, True)[: len(take)]
-    opened = cells.open[take]
+    opened, stated = cells.open[take], cells.stated[take]
     if cells.sheet.mapping.last_age_open:
-        opened = opened | (last & (cells.end[take] < 0))
+        opened = opened | (last & stated & (cells.end[take] < 0))
     unread = cells.placed & ~sound
     lost = np.cumsum(~cells.placed)[take]  # rows of unknown place up to this one
     ahead = np.append(lost, np.count_nonzero(~cells.placed))
@@ -178,6 +182,7 @@ def ordered(cells: Cells, sound: Flags) -> Ordered:
         start=start,
         end=cells.end[take],
         open=opened,
+        stated=stated,
         first=np.append(True, change)[: len(take)],
         last=last,
         broken=np.isin(place, cells.place[unread]) if unread.any() else np.zeros(len(take), bool),
@@ -187,8 +192,10 @@ def ordered(cells: Cells, sound: Flags) -> Ordered:
 
 
 def blocks(rows: Ordered, spoiled: Ints) -> Iterator[Block]:
-    """Vectors of all places but the spoiled ones, a block for each measure and grid."""
-    kept = ~np.isin(rows.place, spoiled) if len(spoiled) else slice(None)
+    """Vectors of all places that are stated and not spoiled, a block for each measure and grid."""
+    kept: Flags | slice = slice(None)
+    if len(spoiled) or not rows.stated.all():
+        kept = rows.stated & ~np.isin(rows.place, spoiled)
     take, place, start = rows.take[kept], rows.place[kept], rows.start[kept]
     if not len(take):
         return
@@ -212,12 +219,26 @@ def blocks(rows: Ordered, spoiled: Ints) -> Iterator[Block]:
             )
 
 
+def groups(rows: Ordered, spoiled: Ints) -> Iterator[Aside]:
+    """The numbers of places that are not stated, those of one age group together."""
+    kept = ~rows.stated & ~np.isin(rows.place, spoiled)
+    take = rows.take[kept]
+    last = np.where(rows.open[kept], OLDEST, np.maximum(rows.end[kept], rows.start[kept]))
+    ages = rows.start[kept] * (OLDEST + 1) + last
+    for one in np.unique(ages).tolist():
+        here = np.zeros(len(rows.cells.sheet), bool)
+        here[take[ages == one]] = True
+        yield from asides(rows.cells, here, divmod(one, OLDEST + 1))
+
+
 def _rounded(values: Array, field: str) -> Array:
     return values if field == RATE else np.round(values, DECIMALS) + 0.0
 
 
-def asides(cells: Cells, rows: Flags) -> Iterator[Aside]:
-    """The numbers of some rows that are of no one age, in the order of their places."""
+def asides(
+    cells: Cells, rows: Flags, ages: tuple[int, int] | None = (0, OLDEST)
+) -> Iterator[Aside]:
+    """The numbers of some rows, in the order of their places, and which ages they are of."""
     take = np.flatnonzero(rows)
     if not len(take):
         return
@@ -234,6 +255,7 @@ def asides(cells: Cells, rows: Flags) -> Iterator[Aside]:
             values=np.round(numbers.values[take], DECIMALS) + 0.0,
             row=sheet.row[take],
             rule=Rule.of(sheet.mapping),
+            ages=ages,
         )
 
 

@@ -13,31 +13,33 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from engine.ages import AgeGrid
 from engine.panel import SEXES
 from server.intake.cells import SEX_UNSTATED, Flags, Ints, parts_of, place_of
-from server.intake.dealing import UNIT, Pool, dealt, in_units, regrouped
+from server.intake.dealing import UNIT, Pool, dealt, in_units
 from server.intake.ledger import Ledger
-from server.intake.schedules import Aside, Block
+from server.intake.schedules import OLDEST, Aside, Block
 
 MATTERS = ("sex", "age", "area")  # in the order in which they are dealt with
 PERSONS = SEXES.index("p")
-ALL_AGES = AgeGrid((0,))
+_NONE = np.zeros(0, np.int64)
 
 
 @dataclass(frozen=True, slots=True)
 class Part:
-    """Counts of one measure that lack the same, as they were delivered."""
+    """Counts of one measure and age group that lack the same, as they were delivered."""
 
-    source: Block | Aside
-    grid: AgeGrid  # of their ages; one group where these are not known
-    units: Ints  # [line, group], millionths
+    source: Aside
     lacks: tuple[str, ...]  # of MATTERS
     by_sex: bool  # women and men get them, or one sex that is stated
 
     @property
     def place(self) -> Ints:
         return self.source.place
+
+    @property
+    def units(self) -> Ints:
+        """In millionths, [line]."""
+        return in_units(self.source.values)
 
     @property
     def step(self) -> str:
@@ -49,7 +51,7 @@ class Part:
         return all(self.source.rule.chosen.get(matter) == "spread" for matter in self.lacks)
 
     def pick(self, lines: Flags) -> "Part":
-        return replace(self, source=self.source.pick(lines), units=self.units[lines])
+        return replace(self, source=self.source.pick(lines))
 
 
 @dataclass(frozen=True, slots=True)
@@ -80,23 +82,25 @@ class Settled:
 def settle(ledger: Ledger) -> Settled:
     """Share out, or leave out, what does not state its sex, age or area. Sums are kept to the last
     millionth; where everything is stated, nothing changes."""
-    placed: list[Block | Aside] = [*ledger.blocks, *ledger.age_totals]
-    if not ledger.ageless and all(ledger.states(one.place).all() for one in placed):
+    bare = any(not ledger.states(total.place).all() for total in ledger.age_totals)
+    if not (ledger.ageless or ledger.grouped or bare):
         return Settled(ledger, ledger)
     blocks: list[Block] = []
     found: list[Part] = []
     lost: list[Part] = []
     account: list[Unstated] = []
-    for measure in dict.fromkeys(one.measure for one in (*placed, *ledger.ageless)):
-        pool = Pool.of([b.pick(ledger.states(b.place)) for b in ledger.of(measure)])
+    asides = (*ledger.ageless, *ledger.grouped, *ledger.age_totals)
+    measures = (*(one.measure for one in ledger.blocks), *(one.measure for one in asides))
+    for measure in dict.fromkeys(measures):
+        pool = Pool.of(ledger.of(measure))
         parts = unstated(ledger, measure, pool)
         made = _shared_out(ledger, pool, parts)
         found += parts
         lost += made.lost
         blocks += _written(pool, made)
         account += _account(ledger, measure, pool, made, parts)
-    totals = (total.pick(ledger.states(total.place)) for total in ledger.age_totals)
-    after = replace(ledger, blocks=tuple(blocks), ageless=(), age_totals=tuple(totals))
+    totals = tuple(total.pick(ledger.states(total.place)) for total in ledger.age_totals)
+    after = replace(ledger, blocks=tuple(blocks), ageless=(), grouped=(), age_totals=totals)
     return Settled(after, ledger, tuple(found), tuple(lost), tuple(account))
 
 
@@ -106,40 +110,31 @@ def unstated(ledger: Ledger, measure: str, pool: Pool) -> list[Part]:
     A total over the ages stands for them where the file has none. Persons beside women and men are
     left out, as their total.
     """
-    totals = [total for total in ledger.age_totals if total.measure == measure]
-    ageless = [aside.once() for aside in ledger.ageless if aside.measure == measure]
-    places = [ledger.places(measure), *(aside.place for aside in ageless)]
-    told = np.unique(np.concatenate(places))
-    bare = [total.pick(~np.isin(total.place, told)) for total in totals]
-    known = np.unique(np.concatenate([told, *(total.place for total in bare)]))
-    return [
-        *(part for block in ledger.of(measure) for part in _parts(ledger, block, known, pool)),
-        *(part for total in bare for part in _parts(ledger, total, known, pool)),
-        *(part for aside in ageless for part in _parts(ledger, aside, known, pool, ageless=True)),
-    ]
+    kinds = (ledger.grouped, ledger.ageless, ledger.age_totals)
+    grouped, ageless, totals = ([one for one in kind if one.measure == measure] for kind in kinds)
+    told = np.concatenate([_NONE, *(one.place for one in (*grouped, *ageless))])
+    bare = [one.pick(~ledger.states(one.place) & ~np.isin(one.place, told)) for one in totals]
+    found = [*grouped, *(one.once() for one in ageless), *bare]
+    known = np.unique(np.concatenate([told, *(one.place for one in bare)]))
+    return [part for source in found for part in _parts(ledger, source, known, pool)]
 
 
-def _parts(
-    ledger: Ledger, source: Block | Aside, known: Ints, pool: Pool, *, ageless: bool = False
-) -> Iterator[Part]:
-    """The lines of a source that lack something, those together that lack the same."""
-    grid = source.grid if isinstance(source, Block) else ALL_AGES
+def _parts(ledger: Ledger, source: Aside, known: Ints, pool: Pool) -> Iterator[Part]:
+    """The lines of a source, those together that lack the same."""
     area, sex, year = parts_of(source.place)
-    units = in_units(source.values.reshape(len(area), len(grid)))
     nowhere, sexless = area == len(ledger.codes), sex == SEX_UNSTATED
     _, sexes, years = parts_of(pool.place)
     persons = nowhere & (sex == PERSONS)
-    some = units.any(axis=-1) & ~(persons & _both_at(source.place, known))
+    some = (source.values > 0) & ~(persons & _both_at(source.place, known))
     split = persons & ~np.isin(year, years[sexes == PERSONS])  # where areas come by sex
     for no_area in (False, True):
         for no_sex in (False, True):
             for by_sex in (False, True):
                 which = (nowhere == no_area) & (sexless == no_sex) & ((split | sexless) == by_sex)
-                lines = which & some
-                missing = {"sex": no_sex, "age": ageless, "area": no_area}
+                missing = {"sex": no_sex, "age": source.ages is None, "area": no_area}
                 named = tuple(matter for matter in MATTERS if missing[matter])
-                if named and lines.any():
-                    yield Part(source.pick(lines), grid, units[lines], named, by_sex)
+                if named and (which & some).any():
+                    yield Part(source.pick(which & some), named, by_sex)
 
 
 def _both_at(persons: Ints, known: Ints) -> Flags:
@@ -166,39 +161,40 @@ def _shared_out(ledger: Ledger, pool: Pool, parts: list[Part]) -> _Made:
                 cells, left = _given(pool, part, line)
                 given += cells
                 unsure |= (cells > 0) & part.source.provisional[line]
-                some = np.asarray(left.any(axis=-1))
-                if some.any():
-                    lost.append(part.pick(some))
+                if left.any():
+                    lost.append(part.pick(left > 0))
         pool = pool.with_units(pool.units + given)
     return _Made(pool.units, unsure, lost)
 
 
 def _given(pool: Pool, part: Part, line: Ints) -> tuple[Ints, Ints]:
-    """What each cell of the pool gets of a part, [cell], and what is left of it, [line, group]."""
-    cells = np.flatnonzero(line >= 0)
-    grid = pool.grid(line >= 0, part.grid)
-    group = np.searchsorted(grid.starts, pool.start[cells], side="right") - 1
-    amounts = regrouped(part.units, part.grid, grid)
-    left, bins = amounts.ravel(), line[cells] * len(grid) + group
-    given = np.zeros_like(pool.units)
-    for weights in _weights(pool, part, cells):
-        got = dealt(left, bins, weights)
-        taken = np.zeros_like(left)
-        np.add.at(taken, bins, got)
-        left = left - taken
+    """What each cell of the pool gets of a part, [cell], and what is left of it, [line]."""
+    given, left = np.zeros_like(pool.units), part.units
+    for may, weights in _weights(pool, part, line >= 0):
+        cells = np.flatnonzero(may)
+        got = dealt(left, line[cells], weights[cells])
         given[cells] += got
-    return given, left.reshape(amounts.shape)
+        taken = np.zeros_like(left)
+        np.add.at(taken, line[cells], got)
+        left = left - taken
+    return given, left
 
 
-def _weights(pool: Pool, part: Part, cells: Ints) -> Iterator[Ints]:
-    """By what cells share, and by what where those that come before have none of it."""
-    own = pool.units[cells]
-    if "age" in part.lacks:
-        yield np.where(pool.adult[cells], own, 0)
-        yield own
-    else:
-        yield own
-        yield pool.at_all_ages()[cells]
+def _weights(pool: Pool, part: Part, here: Flags) -> Iterator[tuple[Flags, Ints]]:
+    """Which cells share and by what, and which and by what where those before have none of it."""
+    if not here.any():
+        return
+    if part.source.ages is None:
+        yield here & pool.adult, pool.units
+        yield here, pool.units
+        return
+    starts = np.array([*pool.grid(here).starts, OLDEST + 1])
+    first, last = part.source.ages  # as wide as the groups that all cells can be summed to
+    low = starts[np.searchsorted(starts, first, side="right") - 1]
+    high = starts[np.searchsorted(starts, min(last, OLDEST), side="right")]
+    ages = here & (pool.start >= low) & (pool.start < high)
+    yield ages, pool.units
+    yield ages, pool.at_all_ages()
 
 
 def _line_of(ledger: Ledger, pool: Pool, part: Part) -> Ints:
@@ -249,7 +245,7 @@ def _account(
     stated, after = by_year(pool.place, pool.units), by_year(pool.place, made.units)
     found: dict[int, Counter[str]] = defaultdict(Counter)
     for part in parts:
-        for year, units in by_year(part.place, part.units.sum(axis=-1)).items():
+        for year, units in by_year(part.place, part.units).items():
             found[year][part.step if part.spread else "left_out"] += units
     return [
         Unstated(

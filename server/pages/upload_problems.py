@@ -6,6 +6,7 @@ from typing import ClassVar
 from server.exports.table import Column, Row, Table
 from server.intake.problems import Problem
 from server.intake.report import Report
+from server.pages import upload_unstated
 from server.pages.contents_tables import Listing
 from server.pages.page import Frame, Notice, Page
 from server.pages.upload import locator
@@ -43,6 +44,8 @@ class UploadProblemsPage(Page):
     errors: Listing
     warnings: Listing
     counted: str  # how rows are counted
+    unstated: Listing  # counts that did not state their sex, age or area: before and after
+    shared_out: str
     holds: tuple[tuple[str, str], ...]  # empty where nothing could be made out
     making: Making | None  # None: it is an edition already
 
@@ -66,12 +69,14 @@ def build(session: Session, upload_id: int, shown: Preview | None = None) -> Upl
         ),
         answer=_answer(upload, report),
         lead=() if upload.edition else (say.read_rows(report.rows, report.sound, number),),
-        tables=(_table(report.problems),),
+        tables=(_table(report.problems), *upload_unstated.listing(report).tables),
         twins={twin: f"{place}/problems.{twin}" for twin in ("csv", "xlsx", "json")},
         place=place,
         errors=_listing("errors", _("Must be put right"), report.errors),
         warnings=_listing("warnings", _("Wants a second look"), report.warnings),
         counted=_("Rows are counted as in the file, the heading being row 1."),
+        unstated=upload_unstated.listing(report),
+        shared_out=upload_unstated.said(report),
         holds=_holds(report),
         making=None if upload.edition else _making(session, upload, report, shown),
     )

@@ -7,6 +7,7 @@ import numpy as np
 from engine.panel import SEXES
 from server.intake.cells import Flags, Ints, parts_of
 from server.intake.checks.check import Marks, RowCheck
+from server.intake.labels import NOT_STATED
 from server.intake.schedules import Ordered
 
 
@@ -57,7 +58,7 @@ def _duplicate(rows: Ordered) -> Iterator[Marks]:
     if failing.any():
         places, which = np.unique(rows.place[failing], return_inverse=True)
         _, sexes, years = parts_of(places)
-        what = [f"{SEXES[sex]} {year}" for sex, year in zip(sexes, years, strict=True)]
+        what = [f"{(*SEXES, NOT_STATED)[sex]} {year}" for sex, year in zip(sexes, years, strict=True)]
         yield Marks(
             _column(rows),
             failing,
@@ -76,7 +77,7 @@ def _pair_marks(rows: Ordered, wrong: Flags) -> Iterator[Marks]:
 
 
 def _gap(rows: Ordered) -> Iterator[Marks]:
-    return _pair_marks(rows, _pairs(rows) & ~rows.open & ~rows.parted & _closed(rows))
+    return _pair_marks(rows, _pairs(rows) & rows.stated & ~rows.open & ~rows.parted & _closed(rows))
 
 
 def _overlap(rows: Ordered) -> Iterator[Marks]:
@@ -85,13 +86,13 @@ def _overlap(rows: Ordered) -> Iterator[Marks]:
 
 
 def _late_start(rows: Ordered) -> Iterator[Marks]:
-    failing = rows.first & ~rows.broken & ~rows.parted_before & (rows.start != 0)
+    failing = rows.first & rows.stated & ~rows.broken & ~rows.parted_before & (rows.start != 0)
     if failing.any():
         yield Marks(_column(rows), failing, {"text": rows.label(failing)})
 
 
 def _no_open_interval(rows: Ordered) -> Iterator[Marks]:
-    failing = rows.last & ~rows.broken & ~rows.parted & ~rows.open
+    failing = rows.last & rows.stated & ~rows.broken & ~rows.parted & ~rows.open
     if failing.any():
         start = rows.start[failing].astype(str).astype(object)
         yield Marks(_column(rows), failing, {"text": rows.label(failing), "start": start})

@@ -9,7 +9,7 @@ from server.intake.checks.check import Check
 from server.intake.labels import NOT_STATED
 from server.intake.ledger import Ledger, common_grid, summed
 from server.intake.problems import Fault, Value
-from server.intake.schedules import MEASURES
+from server.intake.schedules import MEASURES, Aside
 
 
 def _slack(measure: str, parts: int) -> float:
@@ -17,50 +17,49 @@ def _slack(measure: str, parts: int) -> float:
     return 0.5 * (parts + 1) if measure == "person_years" else 0.5
 
 
-def _differs(ledger: Ledger, place: int, measure: str, parts: list[int]) -> Iterator[Fault]:
-    """The age at which a delivered total is furthest from the sum of its parts, if it is off; what
-    does not state its sex, age or area is among the parts."""
+def _differs(
+    ledger: Ledger, place: int, measure: str, parts: list[int], unknown: int
+) -> Iterator[Fault]:
+    """The age at which a delivered total is furthest from the sum of its parts, if it is off. What
+    does not state its sex, age or area (at the place `unknown`) is a part too."""
     lines, ageless = ledger.lines[measure], ledger.of_no_age.get(measure, {})
+    beside = ledger.by_age.get(measure, {}).get(unknown, [])
+    bare = 0.0 if beside else ledger.at_all_ages.get(measure, {}).get(unknown, 0.0)
     block, line = lines[place]
-    whole = [part for part in parts if part in lines]
-    without = {part: ledger.at_all_ages.get(measure, {}).get(part) for part in parts}
-    ages = [lines[part] for part in whole]
+    ages = [lines[part] for part in parts]
     grid = common_grid([(block, line), *ages])
-    total, parts_sum = block.grid.regroup(block.values[line], grid), summed(ages, grid)
+    total, together = block.grid.regroup(block.values[line], grid), summed(ages, grid)
     labels = grid.labels
-    if len(whole) < len(parts):  # some come without ages
-        bare = [without[part] or ageless.get(part, 0.0) for part in parts if part not in lines]
-        known = [ageless.get(part, 0.0) for part in whole]
-        total = np.array([total.sum() + ageless.get(place, 0.0)])
-        parts_sum = np.array([parts_sum.sum() + sum(bare) + sum(known)])
+    without = sum(ageless.get(part, 0.0) for part in (*parts, unknown))
+    groups = [(*np.searchsorted(grid.starts, span, side="right"), n) for span, n in beside]
+    if bare or any(first != last for first, last, _ in groups):  # of no one group
+        given, count = ageless.get(place, 0.0), sum(n for _, n in beside)
+        total = np.array([total.sum() + given])
+        together = np.array([together.sum() + without + count + bare])
         labels = ("all ages",)
-    elif place in ageless:
-        total = np.append(total, ageless[place])
-        parts_sum = np.append(parts_sum, sum(ageless.get(part, 0.0) for part in parts))
-        labels = (*labels, NOT_STATED)
-    off = np.abs(total - parts_sum)
-    if off.max() > _slack(measure, len(parts)):
+    else:
+        together = together.copy()
+        for first, _, count in groups:
+            together[first - 1] += count
+        if place in ageless:
+            total, together = np.append(total, ageless[place]), np.append(together, without)
+            labels = (*labels, NOT_STATED)
+    off = np.abs(total - together)
+    if off.max() > _slack(measure, len(parts) + bool(beside)):
         age = int(off.argmax())
         row = block.row[line, block.grid.position(grid.starts[age]) if age < len(grid) else 0]
         values: dict[str, Value] = {
             "age": labels[age],
             "total": float(total[age]),
-            "sum": float(parts_sum[age]),
+            "sum": float(together[age]),
         }
         yield block.fault(row, ledger.named(place) | values)
-
-
-def _known(ledger: Ledger, measure: str, place: int) -> list[int]:
-    """The place, if the file has anything of the measure there."""
-    kept = (ledger.lines, ledger.of_no_age, ledger.at_all_ages)
-    return [place] if any(place in by.get(measure, {}) for by in kept) else []
 
 
 def _persons(ledger: Ledger) -> Iterator[Fault]:
     for measure in MEASURES.values():
         for place in ledger.both_sexes(measure).tolist():
-            unknown = _known(ledger, measure, place + YEARS)
-            yield from _differs(ledger, place, measure, [*sexes_of(place), *unknown])
+            yield from _differs(ledger, place, measure, [*sexes_of(place)], place + YEARS)
 
 
 def _whole(ledger: Ledger) -> Iterator[Fault]:
@@ -71,8 +70,8 @@ def _whole(ledger: Ledger) -> Iterator[Fault]:
             parts, missing = ledger.parts(place, measure)
             if parts and not missing:
                 _, sex, year = parts_of(place)
-                unknown = _known(ledger, measure, place_of(len(ledger.codes), sex, year))
-                yield from _differs(ledger, place, measure, [*parts, *unknown])
+                unknown = place_of(len(ledger.codes), sex, year)
+                yield from _differs(ledger, place, measure, parts, unknown)
 
 
 def _parts_missing(ledger: Ledger) -> Iterator[Fault]:
@@ -90,17 +89,25 @@ def _parts_missing(ledger: Ledger) -> Iterator[Fault]:
 
 def _all_ages(ledger: Ledger) -> Iterator[Fault]:
     for total in ledger.age_totals:
-        ages, ageless = ledger.lines.get(total.measure, {}), ledger.of_no_age.get(total.measure, {})
         for line, place in enumerate(total.place.tolist()):
-            found = ages.get(place)
-            if found is None or found[0].file != total.file:
+            ages = _at_ages(ledger, total, place)
+            if ages is None:
                 continue
-            block, at = found
-            together = float(block.values[at].sum()) + ageless.get(place, 0.0)
+            together = ages[0] + ledger.of_no_age.get(total.measure, {}).get(place, 0.0)
             given = float(total.values[line])
-            if abs(together - given) > _slack(total.measure, len(block.grid)):
+            if abs(together - given) > _slack(total.measure, ages[1]):
                 values = {**ledger.named(place), "total": given, "sum": together}
                 yield total.fault(total.row[line], values)
+
+
+def _at_ages(ledger: Ledger, total: Aside, place: int) -> tuple[float, int] | None:
+    """Sum and number of the age groups of a place, in the file of a total; None: there are none."""
+    if found := ledger.lines.get(total.measure, {}).get(place):
+        block, at = found
+        same = block.file == total.file
+        return (float(block.values[at].sum()), len(block.grid)) if same else None
+    groups = ledger.by_age.get(total.measure, {}).get(place)
+    return (sum(count for _, count in groups), len(groups)) if groups else None
 
 
 def _only_all_ages(ledger: Ledger) -> Iterator[Fault]:

@@ -24,7 +24,7 @@ def _undecided(matter: str) -> Callable[[Settled], Iterator[Fault]]:
                 by_measure[part.source.measure].append(part)
         for parts in by_measure.values():
             count = sum(int(part.units.sum()) for part in parts) / UNIT
-            rows = np.concatenate([part.source.row.ravel() for part in parts])
+            rows = np.concatenate([part.source.row for part in parts])
             yield parts[0].source.fault(rows, {"count": count})
 
     return find
@@ -64,7 +64,7 @@ def _choices(part: Part) -> set[str]:
 def _own(ledger: Ledger, part: Part) -> Ints:
     """Area and year of each line in one number, and its count: [line, 2]."""
     area, _, year = parts_of(part.place)
-    units = np.where(ledger.is_total(part.place, part.source.measure), 0, part.units.sum(axis=-1))
+    units = np.where(ledger.is_total(part.place, part.source.measure), 0, part.units)
     return np.stack([area * YEARS + year, units], axis=-1)
 
 
@@ -74,7 +74,7 @@ def _stated(ledger: Ledger, measure: str, at: Ints) -> Ints:
     found = np.zeros(len(at), np.int64)
     nowhere = len(ledger.codes)
     for block in ledger.of(measure):
-        own = block.pick(ledger.states(block.place) & ~ledger.is_total(block.place, measure))
+        own = block.pick(~ledger.is_total(block.place, measure))
         area, _, year = parts_of(own.place)
         units = in_units(own.values).sum(axis=-1)
         for key in (area * YEARS + year, nowhere * YEARS + year):
@@ -110,7 +110,7 @@ def _rows(parts: list[Part], area: int, year: int) -> Ints:
     found = [np.zeros(0, np.int64)]
     for part in parts:
         areas, _, years = parts_of(part.place)
-        found.append(part.source.row[(areas == area) & (years == year)].ravel())
+        found.append(part.source.row[(areas == area) & (years == year)])
     return np.concatenate(found)
 
 
@@ -121,7 +121,7 @@ def _nothing_to_go_by(settled: Settled) -> Iterator[Fault]:
         for line, place in enumerate(part.place.tolist()):
             values = {
                 **settled.delivered.named(place),
-                "count": int(part.units[line].sum()) / UNIT,
+                "count": float(part.source.values[line]),
             }
             yield part.source.fault(part.source.row[line], values)
 

@@ -7,7 +7,7 @@ from hypothesis import strategies as st
 
 from engine.ages import AgeGrid
 from server.intake.cells import place_of
-from server.intake.dealing import UNIT, Pool, dealt, in_units, regrouped
+from server.intake.dealing import UNIT, Pool, dealt, in_units
 from server.intake.schedules import Block
 
 FINE, COARSE = AgeGrid((0, 1, 5, 10)), AgeGrid((0, 5, 10))
@@ -62,8 +62,8 @@ def test_cells_stand_in_the_order_of_their_places_whatever_the_blocks() -> None:
     assert (pool.at_all_ages() / UNIT).tolist() == [18] * 3 + [10] * 4 + [27] * 3
     back = pool.laid_out(pool.units)
     assert [(part / UNIT).tolist() for part in back] == [[[1, 2, 3, 4]], [[5, 6, 7], [8, 9, 10]]]
-    assert pool.grid(pool.place == one.place[0], AgeGrid((0, 1))) == AgeGrid((0, 1))
-    assert pool.grid(np.ones(10, bool), FINE) == COARSE
+    assert pool.grid(pool.place == one.place[0]) == FINE
+    assert pool.grid(np.ones(10, bool)) == COARSE
 
 
 def test_an_empty_pool_deals_nothing() -> None:
@@ -76,4 +76,3 @@ def test_an_empty_pool_deals_nothing() -> None:
 def test_millionths_are_whole(count: float) -> None:
     units = in_units(np.array([round(count, 6)]))
     assert units[0] / UNIT == round(count, 6)
-    assert regrouped(np.array([[1, 2, 3, 4]]), FINE, COARSE).tolist() == [[3, 3, 4]]

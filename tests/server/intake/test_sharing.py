@@ -298,3 +298,43 @@ def test_sums_are_kept_whatever_the_order_of_rows(stated, sexless, nowhere, unkn
     assert again.unstated == parsed.unstated
     for key, cell in parsed.cells.items():
         assert_array_equal(again.cells[key].values, cell.values)
+
+
+def test_ages_where_nobody_is_unknown_may_be_left_out() -> None:
+    one = rows("north", UNKNOWN, [0, 0, 18])[2:]
+    parsed = read([*NORTH, *one])
+    assert not parsed.problems
+    assert deaths(parsed, "north", "m") == [10, 30, 121]
+    single = [one[0] | {"age": "7"}]  # of one year of age, among those of 5 and over
+    assert deaths(read([*NORTH, *single]), "north", "m") == [10, 30, 121]
+    twice = [problem.key for problem in read([*NORTH, *one, *one]).errors]
+    assert twice == ["duplicate_cell"]
+
+
+def test_totals_are_compared_with_all_their_parts_known_or_not() -> None:
+    beside = [*rows("north", UNKNOWN, [0, 0, 18])[2:], ageless("north", "m", 5)]
+    persons = [*rows("north", "p", [20, 50, 198]), ageless("north", "p", 5)]
+    table = [*NORTH, *beside, *persons]
+    totals = [
+        rows("north", sex, [count, 0, 0])[0] | {"age": "all ages"}
+        for sex, count in (("f", 100), ("m", 155), (UNKNOWN, 18), ("p", 273))
+    ]
+    assert not read([*table, *totals]).errors
+    kinds = {"persons_differ", "all_ages_differ"}
+
+    def found(table: list[Row]) -> list[str]:
+        problems = [one for one in read(table).problems if one.column == "deaths"]
+        return [problem.found for problem in problems if problem.key in kinds]
+
+    assert not found([*table, *totals])
+    off = [*table[:-4], *rows("north", "p", [20, 50, 199]), table[-1], *totals]
+    assert found(off) == [
+        "199 persons in north, 2001, age 5+",
+        "273 at all ages in north, p 2001",
+    ]
+    off = [*table[:-1], table[-1] | {"deaths": 7}]
+    assert found(off) == ["7 persons in north, 2001, age not stated"]
+    off = [*table, totals[2] | {"deaths": 20}]
+    assert found(off) == ["20 at all ages in north, not stated 2001"]
+    wide = [row | {"age": "0-84"} if row["sex"] == UNKNOWN else row for row in table]
+    assert found(wide) == []  # of no one age: all ages are compared
