@@ -18,7 +18,7 @@ from server.results.keys import (
 )
 from server.results.releasing import FULL, masked
 from server.sentences.text import _
-from server.store import areas, breaks, changes, editions, masks
+from server.store import areas, breaks, changes, editions, masks, schedules
 from server.store.connect import Session
 from server.store.errors import Missing
 from server.store.heading import Heading
@@ -163,6 +163,8 @@ class Changes:
     altered: tuple[Altered, ...]
     moved: tuple[Headline, ...]  # largest first within an indicator
     unmoved: int  # population-years whose counts changed though no headline did
+    periods: tuple[frozenset[str], frozenset[str]]  # held then, held now
+    others: tuple[int, ...]  # numbers of all editions, the newest first
     areas: tuple[tuple[Area | None, Area | None], ...]  # then, now: added, gone or placed elsewhere
     basis: tuple[tuple[str, str, str], ...]  # part of the basis, then, now
     breaks: tuple[tuple[Break | None, Break | None], ...]  # then, now
@@ -184,16 +186,22 @@ class Changes:
 
 
 def found_changes(session: Session, heading: Heading, question: ChangesQuestion) -> Changes:
-    """Eleven statements at most, however much was changed; one engine call a grid and indicator.
+    """A dozen statements at most, however much was changed; one engine call a grid and indicator.
     Missing, BadValue, NotInEdition."""
     code, now = heading.collection.code, heading.edition.number
     then = earlier(session, heading, question.since or default_since(session, heading))
     altered = tuple(
         Altered(key, *pair) for key, pair in _differing(session, code, then.number, now, question)
     )
-    trees = tuple(areas.listing(session, code, number) for number in (then.number, now))
+    trees = (areas.listing(session, code, then.number), areas.listing(session, code, now))
     moved, touched = headlines(
-        session, code, (then.number, now), trees, [one.key for one in altered], question.settings
+        session,
+        code,
+        (then.number, now),
+        trees,
+        [one.key for one in altered],
+        question.settings,
+        question.figures,
     )
     return Changes(
         heading=heading,
@@ -203,6 +211,8 @@ def found_changes(session: Session, heading: Heading, question: ChangesQuestion)
         altered=altered,
         moved=moved,
         unmoved=len(touched - {one.of for one in moved}),
+        periods=(_periods(session, code, then.number), _periods(session, code, now)),
+        others=tuple(one.number for one in editions.listing(session, code)),
         areas=_areas(*trees),
         basis=_basis(then, heading.edition),
         breaks=_breaks(session, code, then.number, now),
@@ -231,6 +241,10 @@ def _unlike(then: Vector | None, now: Vector | None) -> bool:
     return (then.status, then.grid, then.estimated) != (now.status, now.grid, now.estimated) or (
         not np.array_equal(then.values, now.values, equal_nan=True)
     )
+
+
+def _periods(session: Session, code: str, number: int) -> frozenset[str]:
+    return frozenset(schedules.contents(session, code, number).periods)
 
 
 def _areas(

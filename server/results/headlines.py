@@ -8,11 +8,13 @@ import numpy as np
 from engine import indicators
 from engine import settings as named
 from engine.ages import AgeGrid, Array
+from engine.indicators import Indicator
 from engine.panel import Panel
 from engine.settings import Settings
 from server.results.estimating import USUAL
 from server.results.keys import PopulationYear
-from server.results.loading import Beside, Found, load
+from server.results.loading import Beside, Found, Loaded, load
+from server.results.protecting import withheld
 from server.store.connect import Session
 from server.store.records import Area, Key
 
@@ -40,17 +42,19 @@ def headlines(
     trees: Trees,
     changed: Iterable[Key],
     settings: str,
+    shown: str,
 ) -> tuple[tuple[Headline, ...], set[PopulationYear]]:
     """The usual figures that another count of these schedules moves, largest first within an
-    indicator, those one edition lacks before all; and every population-year looked at. Two
-    statements."""
+    indicator, those one edition lacks before all; and every population-year looked at. `shown`:
+    as released, or in full. Two statements."""
     chain = named.find(settings)
     touched = reached(changed, trees, chain)
     ones = sorted(touched)
-    values = [
-        figures(load(session, collection, number, ones, Beside.of(chain, tree)), ones, chain)
-        for number, tree in zip(numbers, trees, strict=True)
-    ]
+    values = []
+    for number, tree in zip(numbers, trees, strict=True):
+        beside = Beside.of(chain, tree)
+        loaded = load(session, collection, number, ones, beside, figures=shown)
+        values.append(figures(loaded, ones, chain))
     found = []
     for key in USUAL:
         before, after = (side[key] for side in values)
@@ -75,11 +79,11 @@ def reached(changed: Iterable[Key], trees: Trees, settings: Settings) -> set[Pop
     found = set()
     for key in changed:
         places = {key.area} | (parts.get(key.area, set()) if settings.borrow else set())
-        for area in places:
+        for code in places:
             for sex in {key.sex, "p"}:
                 for later in range(settings.years):
                     year = f"{int(key.period) + later:04}"
-                    found.add(PopulationYear(area, sex, year))
+                    found.add(PopulationYear(code, sex, year))
     return found
 
 
@@ -101,4 +105,16 @@ def figures(
         panel = Panel.stack([loaded[ones[place]].panel for place in at])
         for key, value in indicators.values(of, panel, settings).items():
             found[key][at] = value
+    for place, one in enumerate(ones):
+        if one in loaded and loaded[one].protected:
+            for indicator in of:
+                column = found[indicator.key]
+                column[place] = _given(column[place], indicator, loaded[one])
     return found
+
+
+def _given(value: float, of: Indicator, loaded: Loaded) -> float:
+    """A figure that rests on a withheld count, as it may be given: to fixed decimals or not."""
+    if withheld(of, loaded):
+        return float("nan")
+    return float(np.round(of.unit.scale * value, of.unit.decimals) / of.unit.scale)

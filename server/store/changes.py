@@ -75,15 +75,12 @@ def differing(session: Session, collection: str, then: int, now: int) -> dict[Ke
 def lineage(session: Session, collection: str, number: int) -> tuple[int, ...]:
     """The edition, the one it was built on, and so on to the first: none of them ever changes, and
     what stands among them is no matter of later events. One statement."""
-    bases = dict(
-        session.execute(
-            select(Edition.number, Edition.base).where(
-                Edition.collection_id == collections.id_of(collection), Edition.number <= number
-            )
+    rows = session.execute(
+        select(Edition.number, Edition.base).where(
+            Edition.collection_id == collections.id_of(collection), Edition.number <= number
         )
-        .tuples()
-        .all()
-    )
+    ).all()
+    bases = {row.number: row.base for row in rows}
     found: list[int] = []
     while number in bases:
         found.append(number)

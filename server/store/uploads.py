@@ -3,7 +3,7 @@
 import datetime as dt
 import hashlib
 import json
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import asdict
 
 from sqlalchemy import delete, insert, select, true, update
@@ -17,6 +17,17 @@ from server.store.records import Basis, Upload, UploadFile
 from server.store.tables import Collection, Edition
 from server.store.tables import Upload as UploadRow
 from server.store.tables import UploadFile as FileRow
+
+_FILE = (
+    FileRow.role,
+    FileRow.name,
+    FileRow.size,
+    FileRow.sha256,
+    FileRow.mapping,
+    FileRow.erased,
+    FileRow.erased_by,
+    FileRow.erased_why,
+)
 
 
 def receive(
@@ -173,14 +184,7 @@ def erasures(session: Session, collection: str) -> dict[int, tuple[UploadFile, .
     rows = session.execute(
         select(
             Edition.number,
-            FileRow.role,
-            FileRow.name,
-            FileRow.size,
-            FileRow.sha256,
-            FileRow.mapping,
-            FileRow.erased,
-            FileRow.erased_by,
-            FileRow.erased_why,
+            *_FILE,
         )
         .join(FileRow, FileRow.upload_id == Edition.upload_id)
         .where(Edition.collection_id == collections.id_of(collection), FileRow.erased.is_not(None))
@@ -190,6 +194,36 @@ def erasures(session: Session, collection: str) -> dict[int, tuple[UploadFile, .
     for row in rows:
         found[row.number] = (*found.get(row.number, ()), UploadFile(*row[1:]))
     return found
+
+
+def digests_of_editions(session: Session, collection: str) -> dict[int, dict[str, str]]:
+    """SHA-256 of the files each edition was made of, by their roles. One statement."""
+    rows = session.execute(
+        select(Edition.number, FileRow.role, FileRow.sha256)
+        .join(FileRow, FileRow.upload_id == Edition.upload_id)
+        .where(Edition.collection_id == collections.id_of(collection))
+    ).all()
+    found: dict[int, dict[str, str]] = {}
+    for row in rows:
+        found.setdefault(row.number, {})[row.role] = row.sha256
+    return found
+
+
+def contents_of_editions(
+    session: Session, collection: str, role: str, numbers: Iterable[int]
+) -> dict[int, tuple[UploadFile, bytes]]:
+    """The files of one role that these editions were made of, with their bytes. One statement."""
+    rows = session.execute(
+        select(Edition.number, *_FILE, FileRow.content)
+        .join(FileRow, FileRow.upload_id == Edition.upload_id)
+        .where(
+            Edition.collection_id == collections.id_of(collection),
+            Edition.number.in_(tuple(numbers)),
+            FileRow.role == role,
+        )
+    ).all()
+    found = (tuple(row) for row in rows)
+    return {number: (UploadFile(*file), content) for number, *file, content in found}
 
 
 def _draft(session: Session, upload_id: int) -> Upload:
@@ -231,14 +265,7 @@ def _read(session: Session, which: ColumnElement[bool]) -> tuple[Upload, ...]:
     for file in session.execute(
         select(
             FileRow.upload_id,
-            FileRow.role,
-            FileRow.name,
-            FileRow.size,
-            FileRow.sha256,
-            FileRow.mapping,
-            FileRow.erased,
-            FileRow.erased_by,
-            FileRow.erased_why,
+            *_FILE,
         ).where(FileRow.upload_id.in_(files))
     ):
         files[file.upload_id].append(UploadFile(*file[1:]))
