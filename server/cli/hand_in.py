@@ -12,13 +12,17 @@ from server.actions.create_collection import create_collection
 from server.actions.discard_upload import discard_upload
 from server.actions.map_upload import map_upload
 from server.actions.receive_upload import receive_upload
-from server.cli import reading
+from server.cli import reading, reading_options
+from server.cli.basis import basis as stated_basis
 from server.cli.opened import opened
 from server.cli.options import Commands, add_command, add_note
 from server.cli.refusals import Declined
 from server.config import Config
+from server.intake.mapping import ROLES
 from server.intake.parsing import Handed, parse
+from server.intake.recognising.look import Before
 from server.intake.report import Report
+from server.pages.upload_reading import earlier
 from server.results.preview import years_of
 from server.sentences import taking as taking_say
 from server.sentences import uploads as say
@@ -60,9 +64,10 @@ def add(commands: Commands) -> None:
     command.add_argument("--check-only", action="store_true", help=_("check and write nothing"))
     add_note(command)
     _add_taking(command)
-    reading.add_files(command)
-    reading.add_mapping(command)
-    reading.add_basis(command)
+    reading_options.add_files(command)
+    reading_options.add_mapping(command)
+    reading_options.add_form(command)
+    reading_options.add_basis(command)
 
 
 def _add_taking(command: argparse.ArgumentParser) -> None:
@@ -90,7 +95,7 @@ def _taking(asked: argparse.Namespace) -> Taking:
 
 
 def run(asked: argparse.Namespace, config: Config) -> int:
-    files = reading.handed(asked, limit=config.upload_limit)
+    files = reading.handed(asked, limit=config.upload_limit, before=_before(asked, config))
     report = Report.of(parse(files))
     for problem in report.problems:
         print(problem.sentence(_, whole))
@@ -100,7 +105,8 @@ def run(asked: argparse.Namespace, config: Config) -> int:
         print(
             _(
                 "The mapping, where it is to be corrected, is --column, --area, --whole, "
-                "--delivered, --sex, --sex-code, --open-age and --provisional."
+                "--delivered, --sex, --sex-code, --open-age and --provisional; the form of the "
+                "file --sheet, --headings, --numbers, --unit, --shape and --not-stated."
             ),
             file=sys.stderr,
         )
@@ -113,6 +119,17 @@ def run(asked: argparse.Namespace, config: Config) -> int:
         return _commit(session, asked, files, report, limit=config.upload_limit)
 
 
+def _before(asked: argparse.Namespace, config: Config) -> dict[str, tuple[Before, ...]]:
+    """How files of each role were read for the newest editions, where that was asked for."""
+    if not asked.as_before:
+        return {}
+    if not asked.collection:
+        raise Declined(_("--as-before needs the collection: --collection CODE"))
+    with opened(config) as session:
+        collections.find(session, asked.collection)
+        return {role: earlier(session, asked.collection, role) for role in ROLES}
+
+
 def _commit(
     session: Session,
     asked: argparse.Namespace,
@@ -123,10 +140,10 @@ def _commit(
 ) -> int:
     now, taking = dt.datetime.now(dt.UTC), _taking(asked)
     if not any(one.code == asked.collection for one in collections.all_collections(session)):
-        basis = reading.basis(asked, None)
+        basis = stated_basis(asked, None)
         _open(session, asked, report, now)
     else:
-        basis = reading.basis(asked, _standing_basis(session, asked.collection))
+        basis = stated_basis(asked, _standing_basis(session, asked.collection))
     upload = receive_upload(
         session,
         collection=asked.collection,

@@ -1,111 +1,77 @@
-"""How files handed in on the command line are to be read, and how their counts were made."""
+"""How files handed in on the command line are to be read: as was said, else as is likely; what is
+in doubt and was not said is refused."""
 
 import argparse
-from dataclasses import fields, replace
+import re
+from collections.abc import Mapping as Mapped
+from collections.abc import Sequence
+from dataclasses import replace
 from pathlib import Path
 
 from server.cli.refusals import Declined
-from server.intake.mapping import COLUMNS, ROLES, Mapping
+from server.intake.forms.delimiters import NAMES
+from server.intake.mapping import COLUMNS, EVERY_ROLE, JANUARY, LISTS, Mapping
 from server.intake.parsing import Handed
-from server.intake.reading import read
-from server.intake.recognising.columns import fields_of, recognise
+from server.intake.recognising.columns import fields_of
+from server.intake.recognising.kinds import sorted_out
+from server.intake.recognising.look import Before, Looked, Said, look, said_in
+from server.sentences import reading as say
+from server.sentences import reading_form as ask
 from server.sentences.text import _
-from server.store.records import Basis
+
+Earlier = Mapped[str, Sequence[Before]]  # by role
+WHAT = {"share": "spread", "leave-out": "left_out"}
+OPTIONS = {  # that answer a question, by its key
+    "kind": "--deaths, --population, --counts ...",
+    "marks": "--numbers",
+    "number": "--cells",
+    "units": "--unit",
+    "rate_is": "--rate-is",
+    "sexes": "--sex-code",
+}
 
 
-def add_files(command: argparse.ArgumentParser) -> None:
-    files = command.add_argument_group(_("files"))
-    for role, text in (
-        ("counts", _("deaths and population in one file")),
-        ("deaths", _("deaths")),
-        ("population", _("population or person-years")),
-        ("births", _("births: live and, if you have them, still; deaths before 28 days")),
-        ("rates", _("death rates or probabilities, to be multiplied by the population")),
-    ):
-        files.add_argument(f"--{role}", metavar=_("FILE"), help=text)
-
-
-def add_mapping(command: argparse.ArgumentParser) -> None:
-    group = command.add_argument_group(
-        _("reading"), _("Only where the columns do not speak for themselves.")
-    )
-    group.add_argument(
-        "--column",
-        action="append",
-        default=[],
-        type=_pair,
-        metavar=_("FIELD=NAME"),
-        help=_(
-            "the column NAME holds FIELD, one of {fields}; before the field a kind of file may "
-            "stand, as in population.age=group",
-            fields=", ".join(COLUMNS),
-        ),
-    )
-    group.add_argument(
-        "--area", type=_pair, metavar="CODE=NAME", help=_("the one area, where no column says it")
-    )
-    group.add_argument(
-        "--whole", type=_pair, metavar="CODE=NAME", help=_("the area that all others are part of")
-    )
-    group.add_argument(
-        "--delivered",
-        action="append",
-        default=[],
-        metavar="CODE",
-        help=_("keep the counts of this area as delivered instead of summing its parts"),
-    )
-    group.add_argument("--sex", choices=("f", "m", "p"), help=_("where no column says it"))
-    group.add_argument(
-        "--sex-code",
-        action="append",
-        default=[],
-        type=_pair,
-        metavar=_("TEXT=SEX"),
-        help=_("how a sex is written in the file, as in 1=m"),
-    )
-    group.add_argument(
-        "--open-age", action="store_true", help=_("the last age has no upper end, though unmarked")
-    )
-    group.add_argument(
-        "--provisional", nargs="+", default=[], metavar=_("YEAR"), help=_("years that may move")
-    )
-
-
-def add_basis(command: argparse.ArgumentParser) -> None:
-    group = command.add_argument_group(_("basis"))
-    group.add_argument(
-        "--people", choices=("residents", "occurrences"), help=_("whose deaths are counted")
-    )
-    group.add_argument(
-        "--dated-by", choices=("death", "registration"), help=_("what decides the year")
-    )
-    group.add_argument(
-        "--population-is", choices=("midyear", "person_years"), help=_("what population means")
-    )
-    group.add_argument(
-        "--population-date", metavar=_("TEXT"), help=_("its date, as in '1 July of each year'")
-    )
-    group.add_argument("--source", metavar=_("TEXT"), help=_("where the counts come from"))
-    group.add_argument(
-        "--vintage",
-        metavar=_("TEXT"),
-        help=_("which estimate of the population, as in 'after the 2021 census'"),
-    )
-
-
-def handed(asked: argparse.Namespace, *, limit: int) -> list[Handed]:
-    """The files with their mappings. Declined where one cannot be opened or is too large."""
-    given = [(role, Path(getattr(asked, role))) for role in ROLES if getattr(asked, role)]
-    if not given:
+def handed(asked: argparse.Namespace, *, limit: int, before: Earlier | None = None) -> list[Handed]:
+    """The files with their mappings. Declined where one cannot be opened or is too large, or does
+    not say what was not said either."""
+    named = [
+        (role, *_opened(getattr(asked, role), limit))
+        for role in EVERY_ROLE
+        if getattr(asked, role, None)
+    ]
+    rest = sorted_out([_opened(path, limit) for path in asked.files], [role for role, *_ in named])
+    if rest.twice:
+        role, name = rest.twice[0]
+        raise Declined(
+            _(
+                "{name} seems to hold the same as another file: {role}. Say which file holds what "
+                "with --deaths FILE, --population FILE and the like.",
+                name=name,
+                role=say.role(role) if role else _("nothing that can be told"),
+            )
+        )
+    files = [*named, *rest.files]
+    if not files:
         raise Declined(
             _("No file was given. Give --counts FILE, or --deaths FILE and --population FILE.")
         )
-    return [_handed(role, path, asked, limit) for role, path in given]
+    return [
+        _handed(
+            role,
+            name,
+            content,
+            asked,
+            (before or {}).get(role, ()),
+            told=(role, name, content) in named,
+        )
+        for role, name, content in files
+    ]
 
 
-def _handed(role: str, path: Path, asked: argparse.Namespace, limit: int) -> Handed:
+def _opened(path: str, limit: int) -> tuple[str, bytes]:
+    """Name and content."""
     try:
-        content = path.read_bytes()
+        content = Path(path).read_bytes()
     except OSError as error:
         raise Declined(
             _(
@@ -123,16 +89,111 @@ def _handed(role: str, path: Path, asked: argparse.Namespace, limit: int) -> Han
                 limit=limit // 1_000_000,
             )
         )
-    mapping = recognise(read(content, path.name), role).mapping
-    return Handed(role, path.name, content, _corrected(mapping, role, asked))
+    return Path(path).name, content
 
 
-def _corrected(mapping: Mapping, role: str, asked: argparse.Namespace) -> Mapping:
-    """What the options say goes before what the headings say."""
+def _handed(
+    role: str,
+    name: str,
+    content: bytes,
+    asked: argparse.Namespace,
+    before: Sequence[Before],
+    *,
+    told: bool,
+) -> Handed:
+    """One file; `told`: what it holds was said, and need not be told by its columns."""
+    looked = _likely(role, name, content, asked, before)
+    if role not in LISTS and not looked.reading.problems:
+        said = _said(looked, asked, told=told)
+        looked = look(content, name, role, said)
+        _require_answers(name, looked)
+    return Handed(role, name, content, _shared(looked.mapping, asked))
+
+
+def _likely(
+    role: str, name: str, content: bytes, asked: argparse.Namespace, before: Sequence[Before]
+) -> Looked:
+    """As before or as likely, in the form that was said."""
+    looked = look(content, name, role, None, before)
+    for form in (_cut(asked, role), _rows(asked, role)):
+        if form:
+            shown = looked.mapping.form
+            looked = look(content, name, role, Said(form=replace(shown, **form), shown=shown))
+    if shape := _of(asked.shape, role):
+        shown = looked.mapping.form
+        wide = () if shape == ask.LONG else tuple(shape.split("-"))
+        looked = look(content, name, role, Said(form=shown, shown=shown, wide=wide))
+    return looked
+
+
+def _cut(asked: argparse.Namespace, role: str) -> dict[str, str]:
+    """Sheet, encoding and delimiter, where they were said."""
+    parted = _of(asked.parted_by, role)
+    signs = {name: sign for sign, name in NAMES.items()}
+    if parted and parted not in signs:
+        raise Declined(
+            _(
+                "--parted-by {sign}: expected one of {known}.",
+                sign=parted,
+                known=", ".join(signs),
+            )
+        )
+    found = {
+        "sheet": _of(asked.sheet, role),
+        "encoding": _of(asked.encoding, role),
+        "delimiter": signs.get(parted, ""),
+    }
+    return {part: value for part, value in found.items() if value}
+
+
+def _rows(asked: argparse.Namespace, role: str) -> dict[str, int]:
+    """'3' or '3-4'."""
+    said = _of(asked.headings, role)
+    if not said:
+        return {}
+    match = re.fullmatch(r"([1-9]\d{0,3})(?:-([1-9]\d{0,3}))?", said)
+    if match is None or int(match[2] or match[1]) < int(match[1]):
+        raise Declined(
+            _("--headings {rows}: expected a row such as 3, or two such as 3-4.", rows=said)
+        )
+    return {"heading": int(match[1]), "heading_rows": int(match[2] or match[1]) - int(match[1]) + 1}
+
+
+def _said(looked: Looked, asked: argparse.Namespace, *, told: bool) -> Said:
+    """What is likely, corrected by what was said."""
+    role, mapping = looked.role, looked.mapping
+    numbers = _of(asked.numbers, role)
+    if numbers and numbers not in ask.MARKS:
+        raise Declined(
+            _(
+                "--numbers {marks}: expected one of {known}.",
+                marks=numbers,
+                known=", ".join(ask.MARKS),
+            )
+        )
+    decimal, thousands = ask.MARKS.get(numbers, (mapping.form.decimal, mapping.form.thousands))
+    units = dict(mapping.units) | {n: size for n, size in asked.unit if n in looked.numbers}
+    said = said_in(mapping, role)
+    return replace(
+        said,
+        kind=role if told else "",
+        form=replace(mapping.form, decimal=decimal, thousands=thousands),
+        shown=mapping.form,
+        marks=bool(numbers) or "marks" not in looked.open,
+        columns={**said.columns, **_columns(role, asked)},
+        across_number=_of(asked.cells, role) or said.across_number,
+        units=tuple(units.items()),
+        rate_is=_of(asked.rate_is, role) or said.rate_is,
+        sex_codes=tuple((dict(mapping.sex_codes) | dict(asked.sex_code)).items()),
+    )
+
+
+def _columns(role: str, asked: argparse.Namespace) -> dict[str, str]:
+    """What --column says of files of this role, by field."""
     columns = {}
     for name, column in asked.column:
         kind, _dot, field = name.rpartition(".")
-        if field not in COLUMNS or kind not in ("", *ROLES):
+        if field not in COLUMNS or kind not in ("", *EVERY_ROLE):
             raise Declined(
                 _(
                     "--column {name}={column}: there is no field {name}. The fields are {known}.",
@@ -143,58 +204,65 @@ def _corrected(mapping: Mapping, role: str, asked: argparse.Namespace) -> Mappin
             )
         if kind == role or (not kind and field in fields_of(role)):
             columns[field] = column
-    area, whole = asked.area or ("", ""), asked.whole or ("", "")
-    return replace(
-        mapping,
-        **columns,
-        only_area=area[0],
-        only_area_name=area[1],
-        whole=whole[0],
-        whole_name=whole[1],
-        delivered=tuple(asked.delivered),
-        only_sex=asked.sex or "",
-        sex_codes=tuple(asked.sex_code),
-        last_age_open=asked.open_age,
-        provisional_years=tuple(asked.provisional),
-    )
+    return columns
 
 
-def basis(asked: argparse.Namespace, before: Basis | None) -> Basis:
-    """As stated, else as before. Declined where neither says it."""
-    given = {
-        "people": asked.people,
-        "dated_by": asked.dated_by,
-        "population": asked.population_is,
-        "population_date": asked.population_date,
-        "source": asked.source,
-        "vintage": asked.vintage,
-    }
-    options = {
-        "people": "--people",
-        "dated_by": "--dated-by",
-        "population": "--population-is",
-        "population_date": "--population-date",
-        "source": "--source",
-    }
-    stated = {
-        field.name: given[field.name] or (getattr(before, field.name) if before else "")
-        for field in fields(Basis)
-    }
-    missing = [options[name] for name, text in stated.items() if not text and name in options]
-    if missing:
+def _require_answers(name: str, looked: Looked) -> None:
+    """Declined where the file can be read in two ways and it was not said in which."""
+    if looked.open:
+        sexes = tuple(code.text for code in looked.noticed.sexes if code.asked)
         raise Declined(
             _(
-                "The basis of the counts is not stated. Give {missing}: whoever reads the figures "
-                "must know it. See ebbline hand-in --help.",
-                missing=", ".join(missing),
+                "{name} does not say by itself: {listed}. Say it with {options}; see ebbline "
+                "hand-in --help.",
+                name=name,
+                listed="; ".join(ask.question(one, sexes) for one in looked.open),
+                options=", ".join(OPTIONS[one] for one in looked.open),
             )
         )
-    return Basis(**stated)
 
 
-def _pair(text: str) -> tuple[str, str]:
-    """'dk=Denmark'."""
-    before, equals, after = text.partition("=")
-    if not (before and equals and after):
-        raise argparse.ArgumentTypeError(_("“{text}” is not of the form A=B", text=text))
-    return before, after
+def _shared(mapping: Mapping, asked: argparse.Namespace) -> Mapping:
+    """With what no column says, where it was said."""
+    area, whole = asked.area or ("", ""), asked.whole or ("", "")
+    wrong = [
+        pair
+        for pair in asked.not_stated
+        if pair[0] not in ("sex", "age", "area") or pair[1] not in WHAT
+    ]
+    if wrong:
+        field, what = wrong[0]
+        raise Declined(
+            _(
+                "--not-stated {field}={what}: expected sex, age or area, and share or leave-out.",
+                field=field,
+                what=what,
+            )
+        )
+    unstated = dict(mapping.unstated) | {field: WHAT[what] for field, what in asked.not_stated}
+    said = {
+        "only_area": area[0],
+        "only_area_name": area[1],
+        "whole": whole[0],
+        "whole_name": whole[1],
+        "delivered": tuple(asked.delivered),
+        "only_sex": asked.sex or "",
+        "last_age_open": asked.open_age,
+        "provisional_years": tuple(asked.provisional),
+        "population_is": JANUARY if asked.population_is == JANUARY else "",
+        "unstated": tuple(unstated.items()),
+        "most_unstated": asked.share_at_most,
+    }
+    return replace(mapping, **{field: value for field, value in said.items() if value})
+
+
+def _of(said: Sequence[str], role: str) -> str:
+    """The last that was said of files of this role, or of all: 'deaths=Tote' or 'Tote'."""
+    found = ""
+    for text in said:
+        kind, equals, value = text.partition("=")
+        if not (equals and kind in EVERY_ROLE):
+            found = text
+        elif kind == role:
+            found = value
+    return found

@@ -55,7 +55,12 @@ def file_reading(file: UploadFile, looked: Looked, errors: dict[str, str]) -> Fi
         problems=tuple(problem.sentence(_, whole) for problem in reading.problems),
         kind=_kind(looked).wrong(errors),
         form=tuple(field.wrong(errors) for field in _form(looked)),
-        form_open=bool(_guessed(looked) or reading.problems or "kind" in looked.open),
+        form_open=bool(
+            _guessed(looked)
+            or reading.problems
+            or "kind" in looked.open
+            or any(field.name in errors for field in _form(looked))
+        ),
         sent=_sent(looked),
         asked=tuple(field.wrong(errors) for field in asked),
         columns=tuple(main),
@@ -81,17 +86,16 @@ def _sent(looked: Looked) -> tuple[tuple[str, str], ...]:
     return (
         (f"{role}.shown", Mapping(form=looked.mapping.form).to_json()),
         *(
-            (f"{role}.sex_text.{place}", said)
-            for place, (said, _proposal) in enumerate(looked.noticed.sexes)
+            (f"{role}.sex_text.{place}", code.text)
+            for place, code in enumerate(looked.noticed.sexes)
         ),
     )
 
 
 def open_questions(looked: Looked) -> tuple[str, ...]:
     """What the file does not say by itself and nothing is chosen for yet."""
-    return tuple(
-        ask.question(one, tuple(said for said, _ in looked.noticed.sexes)) for one in looked.open
-    )
+    sexes = tuple(code.text for code in looked.noticed.sexes if code.asked)
+    return tuple(ask.question(one, sexes) for one in looked.open)
 
 
 def sample(looked: Looked) -> Table:
@@ -164,7 +168,7 @@ def _marks(looked: Looked) -> Field:
     if not found.example:
         code = ask.marks_code(form.decimal, form.thousands)
         return select(name, _("Numbers are written as"), options, code, width="wide")
-    likely = dict(options)[ask.marks_code(found.decimal, found.thousands)].partition(":")[0]
+    likely = ask.marks_example(found.decimal, found.thousands)
     return select(
         name,
         _("Numbers are written as"),
@@ -231,13 +235,13 @@ def _sexes(looked: Looked) -> list[Field]:
     return [
         select(
             f"{looked.role}.sex.{place}",
-            ask.sex_label(said),
+            ask.sex_label(code.text),
             ask.sex_meanings(),
-            stated.get(said, ""),
-            hint=ask.sex_hint(proposal),
-            required=True,
+            stated.get(code.text, ""),
+            hint=ask.sex_hint(code.likely, asked=code.asked),
+            required=code.asked,
         )
-        for place, (said, proposal) in enumerate(looked.noticed.sexes)
+        for place, code in enumerate(looked.noticed.sexes)
     ]
 
 

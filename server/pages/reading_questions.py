@@ -75,7 +75,8 @@ def open_errors(looked: tuple[Looked, ...], texts: Mapped[str, str]) -> dict[str
         if "kind" in one.open:
             found[f"{role}.role"] = ask.kind_missing()
         if "marks" in one.open:
-            found[f"{role}.marks"] = ask.marks_missing(one.marks.example)
+            likely = ask.marks_example(one.marks.decimal, one.marks.thousands)
+            found[f"{role}.marks"] = ask.marks_missing(one.marks.example, likely)
         if "number" in one.open:
             found[f"{role}.across_number"] = ask.number_missing()
         if "rate_is" in one.open:
@@ -85,9 +86,15 @@ def open_errors(looked: tuple[Looked, ...], texts: Mapped[str, str]) -> dict[str
             if number not in units:
                 found[f"{role}.unit.{number}"] = ask.unit_missing()
         codes = dict(one.mapping.sex_codes)
-        for place, (said, _proposal) in enumerate(one.noticed.sexes):
-            if said not in codes:
-                found[f"{role}.sex.{place}"] = ask.sex_missing(said)
+        for place, code in enumerate(one.noticed.sexes):
+            if code.asked and code.text not in codes:
+                found[f"{role}.sex.{place}"] = ask.sex_missing(code.text)
+    given = {name for name in ("only_area", "only_area_name", "only_sex") if texts.get(name, "")}
+    counts = tuple(one for one in looked if one.role not in LISTS and not one.changed)
+    if _lacks(counts, "area") and not given & {"only_area", "only_area_name"}:
+        found["only_area"] = ask.area_missing()
+    if _lacks(counts, "sex") and "only_sex" not in given:
+        found["only_sex"] = ask.only_sex_missing()
     for matter in _unstated_texts(looked):
         if texts.get(f"unstated_{matter}", "") not in ("spread", "left_out"):
             found[f"unstated_{matter}"] = ask.unstated_missing()
@@ -134,6 +141,7 @@ def _one_area(form: _Form, *, without: bool) -> list[Field]:
             _("Code of the one area"),
             form.value("only_area"),
             hint=say.area_hint(without=without),
+            error=form.error("only_area"),
         ),
         text("only_area_name", _("Its name"), form.value("only_area_name")),
     ]
@@ -141,7 +149,8 @@ def _one_area(form: _Form, *, without: bool) -> list[Field]:
 
 def _one_sex(form: _Form) -> Field:
     hint = _("only where no column says it")
-    return select("only_sex", _("Sex"), say.sexes(), form.value("only_sex"), hint=hint)
+    error, value = form.error("only_sex"), form.value("only_sex")
+    return select("only_sex", _("Sex"), say.sexes(), value, hint=hint, error=error)
 
 
 def _whole(form: _Form) -> list[Field]:

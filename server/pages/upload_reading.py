@@ -4,7 +4,7 @@ from collections.abc import Mapping as Mapped
 from dataclasses import dataclass, field, replace
 from typing import Any, ClassVar
 
-from server.intake.mapping import LISTS, Mapping
+from server.intake.mapping import JANUARY, LISTS, Mapping
 from server.intake.recognising.look import Before, Looked, Said, look, said_in
 from server.pages.file_reading import FileReading, file_reading, open_questions, sample
 from server.pages.page import Frame, Page
@@ -19,7 +19,7 @@ from server.store.connect import Session
 from server.store.errors import Refused
 from server.store.records import Basis, Upload
 
-EARLIER = 5  # editions whose files are tried for what a new one is likely to mean
+MOST_EARLIER = 5  # editions whose files are tried for what a new one is likely to mean
 UNSTATED = Basis("", "", "", "", "")
 
 
@@ -60,7 +60,7 @@ def looked_at(session: Session, upload: Upload, answers: Answers | None) -> tupl
                 file.name,
                 file.role,
                 said,
-                () if said else _before(session, upload, file.role),
+                () if said else earlier(session, upload.collection, file.role),
             )
         )
     return tuple(found)
@@ -68,8 +68,10 @@ def looked_at(session: Session, upload: Upload, answers: Answers | None) -> tupl
 
 def mappings(looked: tuple[Looked, ...], answers: Answers) -> dict[str, Mapping]:
     """The mapping of each file, with what holds for all of them."""
+    january = answers.basis is not None and answers.basis.population == JANUARY
+    shared = {**answers.shared, "population_is": JANUARY if january else ""}
     return {
-        one.role: one.mapping if one.role in LISTS else replace(one.mapping, **answers.shared)
+        one.role: one.mapping if one.role in LISTS else replace(one.mapping, **shared)
         for one in looked
     }
 
@@ -148,11 +150,12 @@ def _require_draft(upload: Upload) -> None:
         )
 
 
-def _before(session: Session, upload: Upload, role: str) -> tuple[Before, ...]:
-    """How files of this role were read for the newest editions of the collection."""
-    found = []
-    for earlier in uploads.listing(session, upload.collection):
-        for file in earlier.files:
-            if earlier.edition is not None and file.role == role and file.mapping:
-                found.append(Before(earlier.edition, Mapping.from_json(file.mapping)))
-    return tuple(found[:EARLIER])
+def earlier(session: Session, collection: str, role: str) -> tuple[Before, ...]:
+    """How files of this role were read for the newest editions of a collection."""
+    found = [
+        Before(one.edition, Mapping.from_json(file.mapping))
+        for one in uploads.listing(session, collection)
+        for file in one.files
+        if one.edition is not None and file.role == role and file.mapping
+    ]
+    return tuple(found[:MOST_EARLIER])

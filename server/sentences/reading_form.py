@@ -44,6 +44,11 @@ def marks_code(decimal: str, thousands: str) -> str:
     return next((code for code, signs in MARKS.items() if signs == (decimal, blank)), "")
 
 
+def marks_example(decimal: str, thousands: str) -> str:
+    """A number written with two marks: 1,234.5."""
+    return dict(marks())[marks_code(decimal, thousands)].partition(":")[0]
+
+
 def marks_hint(example: str, *, sure: bool, proposed: str) -> str:
     """Why the marks are asked; `proposed` is a number in the likelier way."""
     if sure:
@@ -138,7 +143,9 @@ def sex_label(text: str) -> str:
     return _("Sex “{text}” means", text=text)
 
 
-def sex_hint(proposed: str) -> str:
+def sex_hint(proposed: str, *, asked: bool) -> str:
+    if not asked:
+        return _("not known; its rows are refused unless you say it")
     if not proposed:
         return _("tables differ in this; see the notes of the source")
     return _("likely {sex}", sex=dict(sex_meanings())[proposed])
@@ -224,8 +231,13 @@ def last_age(text: str) -> str:
 
 
 # what is wrong with an answer
-def marks_missing(example: str) -> str:
-    return _("Say how numbers are written: “{example}” can be read in two ways.", example=example)
+def marks_missing(example: str, likely: str) -> str:
+    return _(
+        "Say how numbers are written: “{example}” can be read in two ways, a thousand times apart; "
+        "where counts are whole, they are written as {likely}.",
+        example=example,
+        likely=likely,
+    )
 
 
 def kind_missing() -> str:
@@ -238,6 +250,14 @@ def unit_missing() -> str:
 
 def sex_missing(text: str) -> str:
     return _("Say which sex “{text}” stands for.", text=text)
+
+
+def area_missing() -> str:
+    return _("Give the one area that the counts are of: no column says it.")
+
+
+def only_sex_missing() -> str:
+    return _("Say whose counts these are: no column says the sex.")
 
 
 def number_missing() -> str:

@@ -206,7 +206,7 @@ def _looked(reading: Reading, role: str, mapping: Mapping, said: Said | None) ->
         "number": bool(mapping.form.across) and "" in numbers,
         "units": bool(told - {number for number, _ in stated}),
         "rate_is": "rate" in numbers and not mapping.rate_is,
-        "sexes": any(text not in answered for text, _ in noticed.sexes),
+        "sexes": any(code.asked and code.text not in answered for code in noticed.sexes),
     }
     return Looked(
         role=role,

@@ -23,12 +23,21 @@ Said = tuple[tuple[str, tuple[str, ...]], ...]  # a field, and the texts that sa
 
 
 @dataclass(frozen=True, slots=True)
+class Code:
+    """A text for a sex that is not known, or means different sexes in different places."""
+
+    text: str
+    likely: str = ""  # f or m, where one is
+    asked: bool = True  # False: rather a slip, which the checks tell if nothing is said about it
+
+
+@dataclass(frozen=True, slots=True)
 class Noticed:
     """Texts as they stand in the file; of fields sex, age and area."""
 
     totals: Said = ()  # kept as a cross-check, never counted twice
     unstated: Said = ()
-    sexes: tuple[tuple[str, str], ...] = ()  # a code to be explained, and the meaning proposed
+    sexes: tuple[Code, ...] = ()
     last_age: str = ""  # the last group, where none is marked as open
     whole: str = ""  # area that is called by a word for the sum of all
 
@@ -75,21 +84,26 @@ def _said(found: dict[str, list[str]]) -> Said:
     return tuple((field, tuple(texts)) for field, texts in found.items() if texts)
 
 
-def _doubtful(texts: Iterable[str]) -> tuple[tuple[str, str], ...]:
+def _doubtful(texts: Iterable[str]) -> tuple[Code, ...]:
     """Codes of sexes that are not known, and M beside H or V, which is then not sure to be men.
 
     H is men in French, Spanish and Portuguese; M beside it, in the latter two, is women. For
-    figures and for M beside V nothing is proposed: Dutch and Spanish tables disagree.
+    figures and for M beside V nothing is likely: Dutch and Spanish tables disagree.
     """
     found = {folded(text): text for text in texts}
     beside = {"h", "v"} & set(found)
-    doubtful = [
-        text for said, text in found.items() if read_sex(text) is None or (beside and said == "m")
-    ]
+    doubtful = {
+        said: text
+        for said, text in found.items()
+        if read_sex(text) is None or (beside and said == "m")
+    }
     if len(doubtful) > MOST_SEXES:
         return ()
     meant = {"h": "m", "m": "f"} if beside == {"h"} else {}
-    return tuple((text, meant.get(folded(text), "")) for text in doubtful)
+    return tuple(
+        Code(text, meant.get(said, ""), asked=said in ("h", "m", "v") or said.isdecimal())
+        for said, text in doubtful.items()
+    )
 
 
 def _last_unmarked(texts: Iterable[str]) -> str:
