@@ -3,8 +3,10 @@
 from dataclasses import dataclass, replace
 from typing import ClassVar
 
-from server.pages import contents_tables, frames
+from server.exports.table import Table
+from server.pages import breaks, contents_tables, frames
 from server.pages.page import Frame, Notice, Page
+from server.results.changes import ChangesQuestion
 from server.results.contents import Contents, ContentsQuestion, contents
 from server.results.holdings import Holdings
 from server.results.questions import (
@@ -59,6 +61,7 @@ class ContentsPage(Page):
     questions: tuple[Sentence, ...]
     choice: Choice | None  # None: the edition holds nothing
     basis: tuple[Sentence, ...]
+    broken: bool  # breaks or years of shock are stated
     editions: contents_tables.Listing  # of the whole collection: it changes, the figures do not
     standing: Standing
 
@@ -72,14 +75,21 @@ def build(session: Session, heading: Heading, question: ContentsQuestion) -> Con
         frame=_frame(heading, question, erased.get(edition.number, ())),
         answer=say.answer(collection.name, edition.number, held.periods, len(held.areas)),
         lead=lead(found),
-        tables=(contents_tables.areas(found, found.newest),) if found.newest else (),
+        tables=_tables(found),
         twins=frames.twins(heading, question) if found.newest else {},
         questions=_questions(heading, question, held, choice) if choice else (),
         choice=choice,
         basis=frames.basis(edition.basis),
+        broken=bool(held.breaks),
         editions=_editions(session, heading, erased),
         standing=_standing(heading),
     )
+
+
+def _tables(found: Contents) -> tuple[Table, ...]:
+    newest = [contents_tables.areas(found, found.newest)] if found.newest else []
+    held = found.holdings
+    return (*newest, *([breaks.table(held.breaks, held.name)] if held.breaks else []))
 
 
 def _editions(
@@ -114,6 +124,7 @@ def _notices(heading: Heading, question: ContentsQuestion) -> tuple[Notice, ...]
         _("Edition {number}", number=newest), address(heading.collection.code, newest, question)
     )
     text = say.superseded(heading.edition.number, newer)
+    text = (*text, *frames.changed(heading, question))
     return (*told, Notice(_("A newer edition stands"), text))
 
 
@@ -178,11 +189,21 @@ def _questions(
         comparison=address(collection, number, comparison),
         trend=address(collection, number, trend),
         curves=address(collection, number, CurvesQuestion(this, *asked)),
+        changes=_changes(heading, question),
         who=names.population(this.sex, held.name(this.area)),
         area=held.name(this.area),
         this=this.period,
         that=that.period,
     )
+
+
+def _changes(heading: Heading, question: ContentsQuestion) -> tuple[int, str] | None:
+    """The edition this one was built on, and where it is told what it changed."""
+    edition = heading.edition
+    if not edition.base:
+        return None
+    asked = ChangesQuestion(edition.base, question.figures, question.settings)
+    return edition.base, address(heading.collection.code, edition.number, asked)
 
 
 def _standing(heading: Heading) -> Standing:

@@ -5,6 +5,7 @@ from collections.abc import Iterable
 from engine import settings as named
 from engine.settings import Settings
 from server.pages.page import Caution, Frame, Notice
+from server.results.changes import ChangesQuestion
 from server.results.questions import Question, address
 from server.results.revision import Moved
 from server.sentences import standing
@@ -40,9 +41,7 @@ def pinned(
             ),
         )
         + place,
-        shown=_("Figures as released")
-        if figures == "released"
-        else _("Figures in full, which are those released: nothing is withheld here"),
+        shown=_shown(heading, figures),
         nav="collections",
         notices=notices,
         colophon=(
@@ -60,6 +59,14 @@ def pinned(
             (_("Settings"), settings_line(named.find(settings))),
         ),
     )
+
+
+def _shown(heading: Heading, figures: str) -> str:
+    if figures == "released":
+        return _("Figures as released")
+    if heading.policy is None:
+        return _("Figures in full, which are those released: nothing is withheld here")
+    return _("Figures in full, nothing withheld: not for release")
 
 
 def settings_line(settings: Settings) -> str:
@@ -93,13 +100,18 @@ def notices(
             _("Edition {number} of {day}", number=moved.number, day=day(moved.made)),
             address(heading.collection.code, moved.number, question),
         )
-        out.append(
-            Notice(
-                _("A newer edition stands"),
-                standing.superseded(heading.edition.number, newer, headline),
-            )
-        )
+        told = standing.superseded(heading.edition.number, newer, headline)
+        out.append(Notice(_("A newer edition stands"), (*told, *changed(heading, question))))
     return tuple(out)
+
+
+def changed(heading: Heading, question: Question) -> Sentence:
+    """A link to what the newest edition changed since this one."""
+    if heading.newest is None:
+        return ()
+    asked = ChangesQuestion(heading.edition.number, question.figures, question.settings)
+    place = address(heading.collection.code, heading.newest, asked)
+    return (Piece(" "), Piece(_("What changed"), place), Piece("."))
 
 
 def cautions(*, beside: Iterable[Told], below: Iterable[Told]) -> tuple[Caution, ...]:
@@ -135,5 +147,10 @@ def basis(of: Basis) -> tuple[Sentence, ...]:
             population=standing.basis_population(of.population),
             date=of.population_date,
             source=of.source.rstrip("."),
+        ),
+        *(
+            [phrase(_("Estimate of the population: {vintage}."), vintage=of.vintage.rstrip("."))]
+            if of.vintage
+            else []
         ),
     )

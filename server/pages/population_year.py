@@ -18,6 +18,7 @@ from server.pages import population_year_tables as tables
 from server.pages.choices import Choice, choice
 from server.pages.page import Caution, Frame, Page
 from server.pages.withholding import caution, charts_given, tables_given
+from server.results.account import AccountQuestion
 from server.results.loading import Loaded
 from server.results.population_year import Findings, population_year
 from server.results.questions import (
@@ -93,8 +94,7 @@ def build(
 
 
 def _computed(found: Findings) -> tuple[Sentence, ...]:
-    shared_out = sharing.computed(found.loaded.panel)
-    return (*basis.computed(found.settings), *([shared_out] if shared_out else []))
+    return (*basis.computed(found.settings), *sharing.computed(found.loaded.panel))
 
 
 def _charts(found: Findings, source: str) -> tuple[Chart, ...]:
@@ -278,4 +278,16 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
     behind = Piece(
         curves_say.question(), address(heading.collection.code, heading.edition.number, curves)
     )
-    return (*basis.further(tuple(links), course), (behind,))
+    return (*basis.further(tuple(links), course), (behind,), *_why(found))
+
+
+def _why(found: Findings) -> tuple[Sentence, ...]:
+    """Why life expectancy reads differently than in the edition this one was built on."""
+    heading, asked = found.heading, found.question
+    base = heading.edition.base
+    if not base:
+        return ()
+    question = AccountQuestion(found.of, base, "e0", asked.figures, asked.settings, asked.settings)
+    place = address(heading.collection.code, heading.edition.number, question)
+    words = _("Does this read differently than in edition {number}, and why?", number=base)
+    return ((Piece(words, place),),)

@@ -49,6 +49,14 @@ class Question(Protocol):
 
     view: ClassVar[str]
 
+    @property
+    def figures(self) -> str:
+        """As released, or in full."""
+
+    @property
+    def settings(self) -> str:
+        """Name of the settings."""
+
     @classmethod
     def parse(cls, items: Items) -> Self:
         """From the keys of an address; UnknownKey, BadValue."""

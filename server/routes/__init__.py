@@ -1,11 +1,14 @@
 """All address families; the application takes each of ROUTERS."""
 
 from server.routes import (
+    account,
+    changes,
     comparison,
     contents,
     curves,
     methods,
     population_year,
+    quality,
     receiving,
     start,
     trend,
@@ -19,6 +22,9 @@ ROUTERS = (
     population_year.router,
     curves.router,
     comparison.router,
+    quality.router,
+    changes.router,
+    account.router,
     trend.router,
     uploads.router,
     receiving.router,

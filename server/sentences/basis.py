@@ -17,9 +17,9 @@ from server.sentences.text import _, n_
 Told = tuple[str, str] | None
 
 
-def computed(settings: Settings) -> tuple[Sentence, ...]:
-    """The chain of stages, and how the intervals come about."""
-    stages = tuple(
+def stages(settings: Settings) -> tuple[Sentence, ...]:
+    """The chain that turns counts into figures."""
+    return tuple(
         phrase(
             "{name} {sentence}",
             name=Piece(f"{_(stage.name)}.", emphasis="strong"),
@@ -27,6 +27,10 @@ def computed(settings: Settings) -> tuple[Sentence, ...]:
         )
         for stage in settings.stages
     )
+
+
+def computed(settings: Settings) -> tuple[Sentence, ...]:
+    """The chain of stages, and how the intervals come about."""
     level = whole(100 * settings.level)
     intervals = phrase(
         "{name}. {sentence} {methods}.",
@@ -40,7 +44,7 @@ def computed(settings: Settings) -> tuple[Sentence, ...]:
         ),
         methods=Piece(_("All methods and sources"), "/methods"),
     )
-    return (*stages, intervals)
+    return (*stages(settings), intervals)
 
 
 def provisional(periods: Sequence[str]) -> Told:

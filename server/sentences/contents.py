@@ -123,12 +123,25 @@ def questions(
     comparison: str,
     trend: str,
     curves: str,
+    changes: tuple[int, str] | None,
     who: str,
     area: str,
     this: str,
     that: str,
 ) -> tuple[Sentence, ...]:
-    """What may be asked next, each with the address of a first answer."""
+    """What may be asked next, each with the address of a first answer. `changes`: the edition this
+    one was built on, and the address of what it changed."""
+    revision = (
+        (
+            phrase(
+                _("{question} Against edition {number}, on which it was built."),
+                question=Piece(_("What did this edition change?"), changes[1]),
+                number=str(changes[0]),
+            ),
+        )
+        if changes
+        else ()
+    )
     return (
         phrase(
             _("{question} For example {who} in {year}."),
@@ -154,6 +167,7 @@ def questions(
             who=who,
             year=this,
         ),
+        *revision,
     )
 
 
