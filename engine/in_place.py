@@ -7,7 +7,7 @@ worked out before and after, for all rows at once. The rows that are not ordinar
 left to the chain. Whether one is depends on nothing but the row.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -60,7 +60,9 @@ class Rows:
     closed groups are as wide, one number, which is read the fastest; those of the open group count
     for nothing."""
 
-    grid: AgeGrid
+    starts: Array  # [age]
+    widths: Array  # [age]
+    adult: slice  # groups that count for the mode
     n: Array
     before: Array  # of the group before
     first: Array  # [row, age]; room for what is worked out and used at once
@@ -74,12 +76,19 @@ class Rows:
             one[None, :1] if np.all(n == n[0]) else np.tile(one, (rows, 1))
             for one in (n, np.roll(n, 1))
         )
-        return cls(grid, n, before, np.empty(shape), np.empty(shape), np.empty(shape, bool))
+        same = np.array(grid.starts, float), grid.widths, adult_groups(grid), n, before
+        return cls(*same, np.empty(shape), np.empty(shape), np.empty(shape, bool))
 
     def some(self, rows: int) -> "Rows":
         """The same for so many rows."""
-        n, before = self.n[:rows], self.before[:rows]
-        return Rows(self.grid, n, before, self.first[:rows], self.inside[:rows], self.flags[:rows])
+        return replace(
+            self,
+            n=self.n[:rows],
+            before=self.before[:rows],
+            first=self.first[:rows],
+            inside=self.inside[:rows],
+            flags=self.flags[:rows],
+        )
 
 
 @dataclass(frozen=True, slots=True)
@@ -116,7 +125,7 @@ def fill(
             _sums(some, block, {key: numbers[key][where] for key in numbers})
             _places(some, block, places[:, where])
         _beyond_the_last(panel.grid, columns, numbers)
-        _numbers(panel.grid, columns, places, numbers)
+        _numbers(panel.grid, room, columns, places, numbers)
         return np.asarray(np.isfinite(columns["lx"][:, -1]) & np.isfinite(columns["mx"][:, -1]))
 
 
@@ -137,7 +146,7 @@ def _rate(panel: Panel, group: int) -> Array:
 
 def _die(rows: Rows, separation: dict[int, Array], block: Block) -> None:
     """ax and qx = n m / (1 + (n - a) m)."""
-    mx, ax, qx, after, widths = block.mx, block.ax, block.qx, rows.first, rows.grid.widths
+    mx, ax, qx, after, widths = block.mx, block.ax, block.qx, rows.first, rows.widths
     ax[:] = rows.n / 2
     np.multiply(mx, rows.n / 2, out=after)
     full = np.flatnonzero(np.greater(after, 1, out=rows.flags))  # more would die than enter
@@ -180,15 +189,15 @@ def _sums(rows: Rows, block: Block, numbers: dict[str, Array]) -> None:
     in the open group are unlike."""
     ax, lx, dx, ex, inside = block.ax, block.lx, block.dx, block.ex, rows.inside
     lost, both, squares = (numbers[key] for key in ("edagger", "gini", "sd0"))
-    part = np.divide(inside, rows.n, out=rows.first)
-    part[:, -1] = 0.0
+    share = np.divide(inside, rows.n, out=rows.first)
+    share[:, -1] = 0.0
     np.vecdot(dx, ex, out=lost)
-    lost -= np.vecdot(part, ex)
-    lost += np.vecdot(part[:, :-1], ex[:, 1:])
+    lost -= np.vecdot(share, ex)
+    lost += np.vecdot(share[:, :-1], ex[:, 1:])
     np.vecdot(inside, lx, out=both)
     both += np.vecdot(block.Lx[:, :-1], lx[:, 1:])
     both -= inside[:, -1] * lx[:, -1] / 2
-    away = np.add(ax, np.array(rows.grid.starts, float), out=rows.first)
+    away = np.add(ax, rows.starts, out=rows.first)
     away -= ex[:, :1]
     away *= away
     np.vecdot(dx, away, out=squares)
@@ -199,11 +208,9 @@ def _places(rows: Rows, block: Block, places: Places) -> None:
     """The first group that no more than half reach, 0 where more reach each; and which adult group
     has most deaths a year."""
     np.argmax(np.less_equal(block.lx, 0.5, out=rows.flags), axis=1, out=places[0])
-    groups, density = adult_groups(rows.grid), block.dx
-    if rows.n.size > 1:
-        density = np.divide(density, rows.n, out=rows.first)
-    if groups.start < groups.stop:
-        np.argmax(density[:, groups], axis=1, out=places[1])
+    density = block.dx if rows.n.size == 1 else np.divide(block.dx, rows.n, out=rows.first)
+    if rows.adult.start < rows.adult.stop:
+        np.argmax(density[:, rows.adult], axis=1, out=places[1])
 
 
 def _beyond_the_last(grid: AgeGrid, columns: dict[str, Array], numbers: dict[str, Array]) -> None:
@@ -223,24 +230,19 @@ def _beyond_the_last(grid: AgeGrid, columns: dict[str, Array], numbers: dict[str
 
 
 def _numbers(
-    grid: AgeGrid, columns: dict[str, Array], places: Places, numbers: dict[str, Array]
+    grid: AgeGrid, rows: Rows, columns: dict[str, Array], places: Places, numbers: dict[str, Array]
 ) -> None:
     """From sums and places to the numbers; the median is nan in the open group, the mode in the
     last closed one."""
-    lx, ex, starts, groups = (
-        columns["lx"],
-        columns["ex"],
-        np.array(grid.starts, float),
-        adult_groups(grid),
-    )
-    e0, below, mode = ex[:, 0], places[0], groups.start + places[1]
+    lx, ex, starts, adult = columns["lx"], columns["ex"], rows.starts, rows.adult
+    e0, below, mode = ex[:, 0], places[0], adult.start + places[1]
     numbers["e0"][:] = e0
     numbers["e65"][:] = ex[:, grid.position(65)] if grid.has(65) else np.nan
     numbers["H"][:] = numbers["edagger"] / e0
     numbers["gini"][:] = 1 - numbers["gini"] / e0
     numbers["sd0"][:] = np.sqrt(numbers["sd0"])
     at, after = (lx[np.arange(len(lx)), group] for group in (below - 1, below))
-    inside = starts[below - 1] + grid.widths[below - 1] * ((at - 0.5) / (at - after))
+    inside = starts[below - 1] + rows.widths[below - 1] * ((at - 0.5) / (at - after))
     numbers["median"][:] = np.where(below > 0, inside, np.nan)
-    known = (mode < groups.stop - 1) & (groups.stop - groups.start > 2)
+    known = (mode < adult.stop - 1) & (adult.stop - adult.start > 2)
     numbers["mode_raw"][:] = np.where(known, starts[mode], np.nan)

@@ -49,7 +49,7 @@ def populations(grid: AgeGrid, count: int, *, people: float = 2e6, seed: int = 1
 
 
 def tables_111() -> list[Result]:
-    return _tables(SINGLE, 100_000, 4_000, ("<= 4", "<= 2.5"), ("<= 10", "<= 8"))
+    return _tables(SINGLE, 100_000, 20_000, ("<= 4", "<= 2.5"), ("<= 10", "<= 8"))
 
 
 def tables_19() -> list[Result]:
