@@ -41,8 +41,9 @@ def add(commands: Commands) -> None:
         run,
         summary=_("check files and make an edition of them"),
         text=_(
-            "Reads CSV files of deaths and population (births if you have them), finds out which "
-            "column is which, runs every check, and makes the next edition of the collection. "
+            "Reads tables of deaths and population (births if you have them) as text or XLSX, "
+            "finds out how they stand and which column is which, runs every check, and makes the "
+            "next edition of the collection. What a file does not say by itself must be said. "
             "With errors it prints them all, writes nothing and ends with code 2. The basis must "
             "be stated for a new collection; later editions take it over unless told otherwise."
         ),

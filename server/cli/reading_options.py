@@ -17,6 +17,8 @@ def add_files(command: argparse.ArgumentParser) -> None:
         ("population", _("population or person-years")),
         ("births", _("births: live and, if you have them, still; deaths before 28 days")),
         ("rates", _("death rates or probabilities, to be multiplied by the population")),
+        ("areas", _("what becomes of area codes: old code, new code, share")),
+        ("breaks", _("years in which the series of an area breaks, and why")),
     ):
         files.add_argument(f"--{role}", metavar=_("FILE"), help=text)
     files.add_argument(
