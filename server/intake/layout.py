@@ -11,7 +11,10 @@ from server.intake.forms.headings import joined
 from server.intake.forms.lines import LONGEST_HEADING, Lines, filled, lines, rows_of, taken
 from server.intake.forms.notes import notes
 from server.intake.forms.numbers import unknown_marks
-from server.intake.forms.opening import Opened, Tab, opened
+from server.intake.forms.opening import Opened, opened
+from server.intake.forms.sheet_notes import Filled, filled_down, told
+from server.intake.forms.sheet_rows import Merged
+from server.intake.forms.workbooks import Tab
 from server.intake.mapping import Form
 from server.intake.problems import Fault
 
@@ -35,6 +38,7 @@ class Layout:
     fields: NDArray[np.int32]  # [line] how many fields it has; 0: a blank line
     stray: int  # row with a quotation mark that neither opens nor ends a field; 0: there is none
     tabs: tuple[Tab, ...] = ()  # sheets of a workbook
+    merged: tuple[Merged, ...] = ()  # cells of the body that were shown as one and filled down
     found: tuple[Found, ...] = field(default=())
 
     @property
@@ -69,10 +73,11 @@ def laid_out(source: Opened, name: str, form: Form) -> Layout:
     deep = min(max(form.heading_rows, 1), MOST_HEADINGS)
     top = taken(body, 0, above, sign)
     heading = taken(body, top.end, deep, sign)
-    body = body[heading.end :]
-    cut, first = lines(body, sign), above + deep + 1
+    first = above + deep + 1
+    sheet = _filled(source, body[heading.end :], first)
+    body, cut = sheet.body, lines(sheet.body, sign)
     names = joined(heading.rows)
-    found = [*source.found, *_unknown(form), *unknown_marks(form)]
+    found = [*source.found, *sheet.found, *_unknown(form), *unknown_marks(form)]
     if below := notes(body, cut, sign, len(names)):
         values = {"text": below.text}
         rows = int(np.count_nonzero(cut.fields[below.line :]))
@@ -93,8 +98,17 @@ def laid_out(source: Opened, name: str, form: Form) -> Layout:
         fields=cut.fields,
         stray=above + 1 if top.torn or heading.torn else cut.stray and cut.stray + first - 1,
         tabs=source.tabs,
+        merged=sheet.ranges,
         found=tuple(found),
     )
+
+
+def _filled(source: Opened, body: bytes, first: int) -> Filled:
+    """Of a workbook, with what is to be said of its cells."""
+    if source.cells is None:
+        return Filled(body, ())
+    sheet = filled_down(body, source.cells.merged, first)
+    return replace(sheet, found=(*sheet.found, *told(source.cells, first - 1)))
 
 
 def _all_named(names: tuple[str, ...], body: bytes, cut: Lines, sign: str) -> tuple[str, ...]:

@@ -110,7 +110,7 @@ def _beyond(rates: Block, kind: str) -> Iterator[Found]:
     line, age = np.unravel_index(int(rates.values.argmax()), rates.values.shape)
     highest = float(rates.values[line, age])
     if highest > (1 if kind == "probability" else HIGHEST):
-        values = {"value": highest, "age": rates.grid.labels[age]}
+        values: dict[str, Value] = {"value": highest, "age": rates.grid.labels[age]}
         key = "probability_above_one" if kind == "probability" else "rate_too_high"
         yield Found(key, rates.fault(rates.row[line, age], values))
 

@@ -8,8 +8,9 @@ from server.intake.checks import files
 from server.intake.forms.delimiters import NAMES
 from server.intake.forms.encodings import ENCODINGS
 from server.intake.forms.lines import taken
-from server.intake.forms.opening import Opened, Tab, opened
+from server.intake.forms.opening import Opened, opened
 from server.intake.forms.units import suggested
+from server.intake.forms.workbooks import Tab
 from server.intake.layout import Layout, laid_out
 from server.intake.mapping import Form
 from server.intake.problems import Problem, errors_of
@@ -83,7 +84,9 @@ def proposed(content: bytes, name: str, stated: Form, *, sample: int = SAMPLE) -
     """The whole form found by looking, but for encoding, delimiter and sheet where they are stated.
     What is no more than a proposal is asked."""
     source = opened(content, stated)
-    bare = Form(encoding=stated.encoding, delimiter=stated.delimiter, sheet=stated.sheet)
+    asked = tuple(one for one in source.found if one.key != "sheet_not_chosen")
+    source = replace(source, found=asked)
+    bare = Form(encoding=stated.encoding, delimiter=stated.delimiter, sheet=source.sheet)
     raw = laid_out(source, name, bare)
     rows = taken(source.body, 0, RAW, raw.delimiter).rows
     top = heading([row or ("",) for row in rows])

@@ -13,6 +13,7 @@ from server.intake.checks import (
     completeness,
     fields,
     files,
+    forms,
     jumps,
     lists,
     moved_counts,
@@ -50,7 +51,7 @@ CHAPTERS = (
         "form",
         "The form of the file",
         "Can the file be read, and does every row say what it counts?",
-        (files, columns, areas, fields, ages),
+        (forms, files, columns, areas, fields, ages),
     ),
     Chapter(
         "sums",

@@ -66,14 +66,14 @@ def _no_area(mapped: Mapped) -> Iterator[Fault]:
 def _twice(mapped: Mapped) -> Iterator[Fault]:
     fields: dict[str, list[str]] = {}
     for field in COLUMNS:
-        if column := mapped.mapping.column(field):
-            fields.setdefault(column, []).append(field)
-    for heading, *values in mapped.mapping.form.across_columns:
-        fields.setdefault(heading, []).append(" ".join(values))
-    for column, used in fields.items():
+        if taken := mapped.mapping.column(field):
+            fields.setdefault(taken, []).append(field)
+    for column in filter(None, mapped.mapping.form.across_columns):
+        fields.setdefault(column[0], []).append(" ".join(column[1:]))
+    for name, used in fields.items():
         if len(used) > 1:
             told = {"fields": ", ".join(used)}
-            yield Fault(column=column, row=mapped.file.form.heading, values=told)
+            yield Fault(column=name, row=mapped.file.form.heading, values=told)
 
 
 def _bad_sex(mapped: Mapped) -> Iterator[Fault]:
@@ -143,6 +143,19 @@ def _rate_kind(mapped: Mapped) -> Iterator[Fault]:
 def _population_kind(mapped: Mapped) -> Iterator[Fault]:
     if mapped.mapping.population_is not in ("", JANUARY):
         yield Fault(values={"text": mapped.mapping.population_is})
+
+
+def _merged_numbers(mapped: Mapped) -> Iterator[Fault]:
+    headings = {heading for _, heading in _numbers_at(mapped)}
+    places = {place: name for place, name in enumerate(mapped.file.columns, 1) if name in headings}
+    for one in mapped.file.merged:
+        if one.column in places:
+            yield Fault(
+                column=places[one.column],
+                row=one.row,
+                last_row=one.last_row,
+                rows=one.last_row - one.row + 1,
+            )
 
 
 def _named(file: Layout) -> str:
@@ -232,6 +245,16 @@ CHECKS: tuple[Check[Mapped], ...] = (
         expected="at most {most}",
         remedy="Split the file by years or areas and upload the parts one after the other.",
         find=_too_many_counts,
+    ),
+    Check(
+        key="merged_number",
+        severity="error",
+        meaning="A number stands in a cell merged over several rows, so that it is not known which "
+        "of them it is of.",
+        found="one number for several rows",
+        expected="a number in each row",
+        remedy="Undo the merging in the workbook, and give each row its number.",
+        find=_merged_numbers,
     ),
     Check(
         key="unit_not_stated",

@@ -2,11 +2,13 @@
 
 import re
 from collections.abc import Callable, Iterator
+from dataclasses import replace
 
 import numpy as np
 
 from server.intake.cells import UNREADABLE, Cells, Flags
 from server.intake.checks.check import Marks, RowCheck
+from server.intake.forms.dates import typed_as
 from server.intake.sheets import Numbers
 
 MOST = 1e12  # a count above is a slip of the pen
@@ -22,6 +24,18 @@ def _label_marks(cells: Cells, field: str, failing: Flags) -> Iterator[Marks]:
 
 def _unreadable(field: str, matter: str) -> Callable[[Cells], Iterator[Marks]]:
     return lambda cells: _label_marks(cells, field, getattr(cells, matter) == UNREADABLE)
+
+
+def _unreadable_age(cells: Cells, *, dated: bool) -> Iterator[Marks]:
+    """Ages that cannot be read: those that look like a date of some group, or the others."""
+    labels = cells.sheet.labels.get("age")
+    if labels is None:
+        return
+    dates = np.array([*(bool(typed_as(text)) for text in labels.texts), False])
+    failing = (cells.start == UNREADABLE) & (dates[labels.codes] == dated)
+    for marks in _label_marks(cells, "age", failing):
+        groups = [typed_as(text) or "" for text in marks.found["text"]]
+        yield replace(marks, found=marks.found | {"group": np.array(groups, object)})
 
 
 def _area_code(cells: Cells) -> Iterator[Marks]:
@@ -109,7 +123,16 @@ CHECKS: tuple[RowCheck[Cells], ...] = (
         found="“{text}”",
         expected="an age group such as 0, 1–4, 85+",
         remedy="Write the group by its ages; where the age is not known, write: not stated.",
-        mark=_unreadable("age", "start"),
+        mark=lambda cells: _unreadable_age(cells, dated=False),
+    ),
+    RowCheck(
+        key="date_for_age",
+        severity="error",
+        meaning="An age group was turned into a date, as spreadsheets do with 1-4 and 5-9.",
+        found="the date “{text}”",
+        expected="an age group, as it may have been typed: {group}",
+        remedy="Format the column as text in the spreadsheet, type the group again and save.",
+        mark=lambda cells: _unreadable_age(cells, dated=True),
     ),
     RowCheck(
         key="unreadable_area_code",

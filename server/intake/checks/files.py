@@ -1,22 +1,18 @@
 """Checks of a file as such: is it a table of text at all."""
 
 from collections import Counter
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 
 import numpy as np
 
+from server.intake.checks import forms
 from server.intake.checks.check import LISTED, Check
 from server.intake.forms.found import faults
+from server.intake.forms.sheet_rows import MOST_COLUMNS
 from server.intake.layout import Layout
 from server.intake.problems import Fault, Problem
 
 MOST_ROWS = 3_000_000
-MOST_COLUMNS = 2_000
-
-
-def _told(key: str) -> Callable[[Layout], list[Fault]]:
-    """What was found while the file was opened."""
-    return lambda file: faults(file.found, key)
 
 
 def _empty(file: Layout) -> Iterator[Fault]:
@@ -46,6 +42,7 @@ def _doubled_heading(file: Layout) -> Iterator[Fault]:
 
 
 def _too_many_columns(file: Layout) -> Iterator[Fault]:
+    yield from faults(file.found, "too_many_columns")
     if len(file.columns) > MOST_COLUMNS:
         yield Fault(row=file.form.heading, values={"most": MOST_COLUMNS})
 
@@ -71,111 +68,6 @@ def _uneven_rows(file: Layout) -> Iterator[Fault]:
 
 
 CHECKS: tuple[Check[Layout], ...] = (
-    Check(
-        key="not_text",
-        severity="error",
-        meaning="The file is not a table of text.",
-        found="{what}",
-        expected="a CSV file: lines of text, fields between commas, semicolons or tabs",
-        remedy="Save the table as CSV with the encoding UTF-8 and upload that file.",
-        find=_told("not_text"),
-    ),
-    Check(
-        key="broken_package",
-        severity="error",
-        meaning="A file packed with gzip is damaged or cut short.",
-        found="{packed} bytes that cannot be unpacked to their end",
-        expected="a whole file packed with gzip, or the file itself",
-        remedy="Pack the file again, or upload it unpacked.",
-        find=_told("broken_package"),
-    ),
-    Check(
-        key="package_too_large",
-        severity="error",
-        meaning="A packed file would grow beyond what one upload may hold.",
-        found="{packed} bytes that unpack to more than {most}",
-        expected="at most {most} bytes unpacked",
-        remedy="Split the file by years and upload the parts one after the other.",
-        find=_told("package_too_large"),
-    ),
-    Check(
-        key="package_in_package",
-        severity="error",
-        meaning="A packed file holds another packed file.",
-        found="a packed file inside a packed file",
-        expected="a table of text inside, packed once",
-        remedy="Unpack the file, and upload what is inside.",
-        find=_told("package_in_package"),
-    ),
-    Check(
-        key="unknown_encoding",
-        severity="error",
-        meaning="The mapping names an encoding that is not known here.",
-        found="“{encoding}” as the encoding",
-        expected="one of {known}",
-        remedy="Correct the mapping.",
-        find=_told("unknown_encoding"),
-    ),
-    Check(
-        key="wrong_encoding",
-        severity="error",
-        meaning="Letters of the file are stored in another encoding than the one it is read with, "
-        "or in two different ones.",
-        found="the byte {byte}, which has no meaning there",
-        expected="text in the encoding {encoding}",
-        remedy="Say in the mapping which encoding it is, or save the file again with the encoding "
-        "UTF-8.",
-        find=_told("wrong_encoding"),
-    ),
-    Check(
-        key="encoding_guessed",
-        severity="warning",
-        meaning="The file does not say how its letters are stored and is no UTF-8, so that its "
-        "encoding was guessed.",
-        found="letters read as {encoding}: “{text}”",
-        expected="an encoding that is stated or shows in the bytes",
-        remedy="Look whether the letters are right; if not, say in the mapping which encoding it "
-        "is.",
-        find=_told("encoding_guessed"),
-    ),
-    Check(
-        key="unknown_delimiter",
-        severity="error",
-        meaning="The mapping names a sign between fields that cannot be one.",
-        found="“{text}” as the sign between fields",
-        expected="a comma, a semicolon, a tab, a pipe or a blank",
-        remedy="Correct the mapping.",
-        find=_told("unknown_delimiter"),
-    ),
-    Check(
-        key="bad_heading_setting",
-        severity="error",
-        meaning="The mapping names a row for the heading where none can stand.",
-        found="the heading in row {row}, of {rows} rows",
-        expected="a row from 1 to {most}, and 1 to 10 rows",
-        remedy="Correct the mapping.",
-        find=_told("bad_heading_setting"),
-    ),
-    Check(
-        key="unknown_marks",
-        severity="error",
-        meaning="The mapping names marks of numbers that cannot be, or one mark for two things.",
-        found="“{decimal}” before decimals and “{thousands}” between thousands",
-        expected="a full stop or a comma before decimals, and another mark or none between "
-        "thousands",
-        remedy="Correct the mapping.",
-        find=_told("unknown_marks"),
-    ),
-    Check(
-        key="notes_left_out",
-        severity="warning",
-        meaning="Rows below the table hold text and no counts. They are taken for notes and left "
-        "out.",
-        found="“{text}”",
-        expected="rows of counts down to the end, or notes",
-        remedy="Look whether they are notes. If not, fill in what these rows lack.",
-        find=_told("notes_left_out"),
-    ),
     Check(
         key="empty_file",
         severity="error",
@@ -252,7 +144,7 @@ CHECKS: tuple[Check[Layout], ...] = (
         find=_uneven_rows,
     ),
 )
-KINDS = {check.key: check for check in CHECKS}
+KINDS = {check.key: check for check in (*forms.CHECKS, *CHECKS)}
 
 
 def problems_of(file: Layout) -> list[Problem]:
@@ -261,4 +153,4 @@ def problems_of(file: Layout) -> list[Problem]:
     for only in (*unopened, "empty_file", "blank_heading", "too_many_columns"):
         if problems := KINDS[only].problems(file, file.name):
             return problems
-    return [problem for check in CHECKS for problem in check.problems(file, file.name)]
+    return [problem for check in KINDS.values() for problem in check.problems(file, file.name)]

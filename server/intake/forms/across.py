@@ -50,7 +50,7 @@ class Spread:
 
 def spread(form: Form) -> Spread | None:
     """Groups of columns in the order of their first headings; None: the table is long."""
-    if not form.across:
+    if not form.across or not sound(form):
         return None
     place = form.across.index("number") if "number" in form.across else -1
     groups: dict[tuple[str, ...], dict[str, str]] = {}
@@ -61,6 +61,11 @@ def spread(form: Form) -> Spread | None:
         fields=tuple(field for field in form.across if field != "number"),
         groups=tuple(Group(values, columns) for values, columns in groups.items()),
     )
+
+
+def sound(form: Form) -> bool:
+    """Whether each heading has one value for each matter that stands in headings."""
+    return all(len(column) == len(form.across) + 1 for column in form.across_columns)
 
 
 def wrong(form: Form, role: str, taken: Sequence[str]) -> Iterator[Found]:
@@ -76,7 +81,7 @@ def wrong(form: Form, role: str, taken: Sequence[str]) -> Iterator[Found]:
     if set(form.across) - set(FIELDS) or len(set(form.across)) != len(form.across):
         yield found("a matter that cannot stand in headings, or one named twice")
         return
-    if any(len(column) != len(form.across) + 1 for column in form.across_columns):
+    if not sound(form):
         yield found("a heading without a value for each matter")
         return
     if not form.across_columns:

@@ -51,22 +51,20 @@ def filled(body: bytes, cut: Lines, delimiter: str, width: int) -> NDArray[np.bo
         return np.zeros(width, bool)
     text = np.frombuffer(body, np.uint8)
     splits = _marks(text, delimiter)[1]
-    line = np.searchsorted(cut.ends, at := np.flatnonzero(splits))
-    inner = at[even[line]].reshape(-1, width - 1)
+    at = np.flatnonzero(splits)
+    inner = at[even[np.searchsorted(cut.ends, at)]].reshape(-1, width - 1)
     edges = np.column_stack([cut.starts[even] - 1, inner, cut.ends[even]])
-    found: NDArray[np.bool_] = (np.diff(edges) > 1).any(axis=0)
-    return found
+    return np.asarray((np.diff(edges) > 1).any(axis=0))
 
 
 def _marks(text: NDArray[np.uint8], delimiter: str) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
     """Where lines end and fields part."""
     breaks, splits = text == NEWLINE, text == ord(delimiter)
     quotes = text == QUOTE
-    if quotes.any():
-        outside = np.bitwise_xor.accumulate(quotes) ^ True
-        breaks &= outside
-        splits &= outside
-    return breaks, splits
+    if not quotes.any():
+        return breaks, splits
+    outside = np.bitwise_xor.accumulate(quotes) ^ True
+    return breaks & outside, splits & outside
 
 
 def _stray(text: NDArray[np.uint8], delimiter: str) -> int:

@@ -4,26 +4,23 @@ from dataclasses import dataclass
 
 from server.intake.forms.encodings import decoded
 from server.intake.forms.found import Found
+from server.intake.forms.packages import ZIP
+from server.intake.forms.sheet_rows import BETWEEN, SheetRows
 from server.intake.forms.unpacking import unpacked
+from server.intake.forms.workbooks import Tab, workbook
 from server.intake.mapping import Form
 from server.intake.problems import Fault
 
 FOREIGN = {
-    b"PK\x03\x04": "a zipped spreadsheet",
-    b"\xd0\xcf\x11\xe0": "an old spreadsheet",
+    b"\xd0\xcf\x11\xe0": "a spreadsheet of the old kind, or one locked with a password",
     b"%PDF": "a PDF",
+    b"{\\rtf": "a text document",
+    b"BZh": "a file packed with bzip2",
+    b"\xfd7zXZ": "a file packed with xz",
+    b"7z\xbc\xaf": "a file packed with 7-Zip",
+    b"PAR1": "a Parquet file",
 }
 NO_TEXT = "bytes of value 0, which no text has"
-
-
-@dataclass(frozen=True, slots=True)
-class Tab:
-    """A sheet of a workbook."""
-
-    name: str
-    rows: int
-    columns: int
-    hidden: bool
 
 
 @dataclass(frozen=True, slots=True)
@@ -37,7 +34,8 @@ class Opened:
     delimiter: str = ""  # where it does not have to be found out
     sheet: str = ""
     tabs: tuple[Tab, ...] = ()
-    texts: tuple[str, ...] = ()  # of a workbook: numbers that stand there as texts
+    cells: SheetRows | None = None
+    texts: tuple[str, ...] = ()  # of a workbook: texts that may be numbers
     found: tuple[Found, ...] = ()
 
 
@@ -46,10 +44,33 @@ def opened(content: bytes, form: Form) -> Opened:
     package = unpacked(content)
     if package.found:
         return Opened(b"", found=package.found)
-    content = package.content
+    if package.content.startswith(ZIP):
+        return _no_table("package_in_package") if package.packed else _sheet(content, form)
     for start, what in FOREIGN.items():
-        if content.startswith(start):
-            return Opened(b"", found=(Found("not_text", Fault(values={"what": what})),))
+        if package.content.startswith(start):
+            return _no_table("not_text", what=what)
+    return _text(package.content, form)
+
+
+def _no_table(key: str, **values: str) -> Opened:
+    return Opened(b"", found=(Found(key, Fault(values=values)),))
+
+
+def _sheet(content: bytes, form: Form) -> Opened:
+    book = workbook(content, form)
+    return Opened(
+        body=book.body,
+        sure=("encoding", "sheet") if book.sure else ("encoding",),
+        delimiter=BETWEEN,
+        sheet=book.sheet,
+        tabs=book.tabs,
+        cells=book.cells,
+        texts=book.texts,
+        found=book.found,
+    )
+
+
+def _text(content: bytes, form: Form) -> Opened:
     text = decoded(content, form.encoding)
     found = list(text.found)
     if b"\0" in text.body:
@@ -59,6 +80,6 @@ def opened(content: bytes, form: Form) -> Opened:
         body=text.body,
         encoding=text.encoding,
         label=text.label,
-        sure=("encoding",) if text.sure else (),
+        sure=("encoding", "sheet") if text.sure else ("sheet",),
         found=tuple(found),
     )

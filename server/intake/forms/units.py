@@ -49,7 +49,7 @@ def suggested(heading: str) -> str:
         if match := pattern.search(text):
             power = "1" + re.sub(r"\D", "", match["zeros"])
             return f"1/{power}" if divided else power
-    for words, power in _WORDS:
+    for words, zeros in _WORDS:
         if words.search(text):
-            return f"1/{10**-power}" if power < 0 else str(10**power)
+            return f"1/1{'0' * -zeros}" if zeros < 0 else f"1{'0' * zeros}"
     return ""

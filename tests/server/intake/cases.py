@@ -66,6 +66,7 @@ CASES = (
     Case("unreadable_year", _set(WOMEN, year="12")),
     Case("unknown_sex", _set(WOMEN, sex="F/M")),
     Case("unreadable_age", _set(ONE, age="the oldest")),
+    Case("date_for_age", _set(where(SOUND, age="1-4")[:3], age="2026-01-04")),
     Case("unreadable_area_code", _set(NORTH_2012, area="north east")),
     Case("missing_area_name", lambda: [_named("", area="")]),
     Case("area_names_share_code", lambda: [_named("Nörth", area="", area_name="name")]),

@@ -1,10 +1,13 @@
 """One spoilt file for each way in which it can fail to be a table."""
 
+import re
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 from gzip import compress
 
-from server.intake.checks.files import MOST_COLUMNS
+from openpyxl.worksheet.worksheet import Worksheet
+
+from server.intake.forms.sheet_rows import MOST_COLUMNS
 from server.intake.forms.unpacking import MOST_UNPACKED
 from server.intake.mapping import Form, Mapping
 from server.intake.parsing import Handed
@@ -12,6 +15,7 @@ from server.intake.standing import NOTHING_STANDS, Standing
 from server.store.records import Basis
 from tests.server.intake.tables import (
     AGES,
+    COLUMNS,
     Row,
     counts,
     csv,
@@ -21,6 +25,13 @@ from tests.server.intake.tables import (
     setting,
     where,
     without,
+)
+from tests.server.intake.workbooks import (
+    SHEET,
+    repacked,
+    table_cells,
+    with_kept_values,
+    xlsx,
 )
 
 SOUND = rows()
@@ -42,6 +53,36 @@ def _bytes(content: bytes) -> Callable[[], list[Handed]]:
 
 def _formed(content: bytes = b"", **form: object) -> Callable[[], list[Handed]]:
     return lambda: [counts(content or csv(SOUND), form=Form(**form))]  # type: ignore[arg-type]
+
+
+def book(content: bytes, **form: object) -> Handed:
+    return Handed("counts", "counts.xlsx", content, replace(COLUMNS, form=Form(**form)))  # type: ignore[arg-type]
+
+
+def with_formula(sheet: Worksheet) -> None:
+    sheet["E3"] = "=E2-1"
+
+
+def hidden_row(sheet: Worksheet) -> None:
+    sheet.row_dimensions[5].hidden = True
+
+
+def merging(first: str, last: str) -> Callable[[Worksheet], None]:
+    return lambda sheet: sheet.merge_cells(f"{first}:{last}")
+
+
+def overlapping() -> bytes:
+    """A workbook in which one range is merged again and again."""
+    merged = '<mergeCell ref="A2:A141"/>' * 8_000
+    closed = f"</sheetData><mergeCells>{merged}</mergeCells>"
+    return repacked(BOOK, {SHEET: lambda text: text.replace("</sheetData>", closed)})
+
+
+def crowded() -> bytes:
+    """A sheet of few bytes that would be a table of a thousand million fields."""
+    row = '<row r="{0}"><c r="BXX{0}"><v>1</v></c></row>'
+    rows = "".join(row.format(number * 8) for number in range(1, 100_000))
+    return repacked(BOOK, {SHEET: lambda text: re.sub("<row.*</row>", rows, text)})
 
 
 def bomb() -> bytes:
@@ -86,21 +127,31 @@ def wider(table: list[Row]) -> list[Row]:
 
 
 JOINED = without(SOUND, where(SOUND, year=2012)) + wider(where(SOUND, year=2012))
+CELLS = table_cells(SOUND)
+BOOK = xlsx(CELLS)
 WIDE = ",".join(f"c{number}" for number in range(MOST_COLUMNS + 1)).encode() + b"\n1\n"
 ISLE = csv(SOUND).replace(b"north", "Nørre".encode("latin-1"))
 
 FORM_CASES = (
-    Case("not_text", _bytes(b"PK\x03\x04 and so on")),
+    Case("not_text", _bytes(b"%PDF-1.7 and so on")),
     Case("broken_package", _bytes(compress(csv(SOUND))[:-9])),
     Case("package_too_large", lambda: [counts(bomb())]),
     Case("package_in_package", _bytes(compress(compress(csv(SOUND))))),
+    Case("packed_too_tightly", lambda: [book(repacked(BOOK, {SHEET: b"<a/>" + b" " * 2**25}))]),
+    Case("broken_workbook", lambda: [book(BOOK[:2_000])]),
+    Case("sheet_too_large", lambda: [book(crowded())]),
+    Case("unknown_sheet", lambda: [book(BOOK, sheet="Deaths")]),
+    Case("sheet_not_chosen", lambda: [book(xlsx(CELLS, more={"More": CELLS}))]),
+    Case("formula_without_value", lambda: [book(xlsx(CELLS, change=with_formula))]),
+    Case("formulas_kept", lambda: [book(with_kept_values(xlsx(CELLS, change=with_formula)))]),
+    Case("hidden_cells", lambda: [book(xlsx(CELLS, change=hidden_row))]),
+    Case("merged_filled", lambda: [book(xlsx(CELLS, change=merging("A2", "A71")))]),
+    Case("too_many_merged", lambda: [book(overlapping())]),
+    Case("beside_the_sheet", lambda: [book(repacked(BOOK, {"xl/vbaProject.bin": b"macro"}))]),
     Case("unknown_encoding", _formed(encoding="utf-7")),
     Case("wrong_encoding", _formed(ISLE, encoding="utf-8")),
     Case("encoding_guessed", lambda: [counts(ISLE, area="", area_name="area")]),
     Case("unknown_delimiter", _formed(delimiter="x")),
-    Case("bad_heading_setting", _formed(heading=0)),
-    Case("unknown_marks", _formed(decimal=",", thousands=",")),
-    Case("notes_left_out", _bytes(csv(SOUND) + b"\nSource: the registry\n")),
     Case("bad_heading_setting", _formed(heading=0)),
     Case("unknown_marks", _formed(decimal=",", thousands=",")),
     Case("notes_left_out", _bytes(csv(SOUND) + b"\nSource: the registry\n")),
@@ -117,6 +168,7 @@ FORM_CASES = (
 COLUMN_CASES = (
     Case("bad_across", lambda: [wide(across_number="people")], "missing_column"),
     Case("too_many_counts", lambda: [wide(csv_rows(430_000))]),
+    Case("merged_number", lambda: [book(xlsx(CELLS, change=merging("E2", "E3")))], "merged_filled"),
     Case("unit_not_stated", lambda: [headed(b"population (in thousands)")]),
     Case("bad_unit", lambda: [counts(SOUND, units=(("deaths", "some"),))]),
     Case("rate_kind_not_stated", lambda: [rated(rate_is="ratio")]),

@@ -1,0 +1,249 @@
+"""The cells of one sheet of a workbook, read piece by piece into rows of text."""
+
+import re
+from collections.abc import Callable
+from dataclasses import dataclass, field
+
+from server.intake.forms.dates import date_of
+from server.intake.forms.packages import Broken, Package, local
+from server.intake.forms.unpacking import MOST_UNPACKED
+
+BETWEEN = "\x1f"  # between fields: a sign that no cell can hold
+LAST_ROW, LAST_COLUMN = 1_048_576, 16_384  # of any sheet
+MOST_COLUMNS = 2_000  # of a table
+MOST_MERGED = 20_000
+LISTED = 100  # cells that are named one by one
+_REFERENCE = re.compile(r"([A-Z]{1,3})(\d{1,7})")
+_ESCAPED = re.compile(r"_x([0-9A-Fa-f]{4})_")
+
+
+class TooLarge(Exception):
+    """A sheet holds more text than an upload may."""
+
+
+class TooWide(Exception):
+    """A row of a sheet, its argument, has more fields than any table."""
+
+
+@dataclass(frozen=True, slots=True)
+class Book:
+    """What the sheets of a workbook share."""
+
+    texts: list[str]  # as they are written into a table
+    dates: frozenset[int]  # styles of cells that show a date
+    from_1904: bool
+
+
+@dataclass(frozen=True, slots=True)
+class Merged:
+    """A range of cells shown as one: rows and columns from 1."""
+
+    row: int
+    column: int
+    last_row: int
+    last_column: int
+
+
+@dataclass(slots=True)
+class SheetRows:
+    """Rows of a sheet: fields between BETWEEN, and what is special about some of its cells."""
+
+    rows: list[str] = field(default_factory=list)
+    width: int = 0
+    hidden: list[int] = field(default_factory=list)  # rows with cells
+    hidden_columns: list[int] = field(default_factory=list)
+    formulas: int = 0  # cells with one
+    valueless: list[str] = field(default_factory=list)  # first cells with a formula and no value
+    merged: list[Merged] = field(default_factory=list)
+
+
+def sheet_rows(package: Package, part: str, book: Book, decimal: str) -> SheetRows:
+    """All rows down to the last with a cell. Raises: Broken, TooLarge, TooWide."""
+    reader = _Reader(book, decimal)
+    package.parse(part, reader.begin, reader.end, reader.text)
+    return reader.sheet
+
+
+def place(reference: str) -> tuple[int, int]:
+    """Row and column of a cell, from 1. Raises: Broken.
+
+    >>> place("AB12")
+    (12, 28)
+    """
+    match = _REFERENCE.fullmatch(reference)
+    if not match:
+        raise Broken(reference)
+    column = 0
+    for letter in match[1]:
+        column = column * 26 + ord(letter) - 64
+    row = int(match[2])
+    if not (0 < row <= LAST_ROW and column <= LAST_COLUMN):
+        raise Broken(reference)
+    return row, column
+
+
+def letters(column: int) -> str:
+    """A column as a spreadsheet names it.
+
+    >>> letters(28)
+    'AB'
+    """
+    name = ""
+    while column:
+        column, rest = divmod(column - 1, 26)
+        name = chr(65 + rest) + name
+    return name
+
+
+def written(text: str) -> str:
+    """A text on one line, with its escapes undone, quoted where it has to be."""
+    if "_x" in text:
+        text = _ESCAPED.sub(lambda match: chr(int(match[1], 16)), text)
+    text = " ".join(text.replace(BETWEEN, " ").replace("\0", " ").split())
+    return '"' + text.replace('"', '""') + '"' if '"' in text else text
+
+
+def number_text(value: str, decimal: str = ".") -> str:
+    """A number of a sheet as text: whole ones without decimals, others with all they need.
+
+    >>> number_text("2014.0"), number_text("0.30000000000000004"), number_text("1.5", ",")
+    ('2014', '0.30000000000000004', '1,5')
+    """
+    if value.isdecimal() and (len(value) < 16 and (value[0] != "0" or value == "0")):
+        return value
+    try:
+        number = float(value)
+    except ValueError:
+        return value
+    if abs(number) < 1e15 and number == int(number):
+        return str(int(number))
+    return repr(number).replace(".", decimal)
+
+
+class _Reader:
+    """Takes the pieces of the XML in their order; holds one row at a time."""
+
+    def __init__(self, book: Book, decimal: str) -> None:
+        self.sheet = SheetRows()
+        self._book, self._decimal = book, decimal
+        self._row, self._hidden, self._column = 0, False, 0
+        self._cells: list[str] = []
+        self._kind, self._style, self._formula = "", 0, False
+        self._value: list[str] = []
+        self._listens = self._inside = False  # to a value; within phonetic text
+        self._size = 0
+        self._begin: dict[str, Callable[[dict[str, str]], None]] = {
+            "row": self._begin_row,
+            "c": self._begin_cell,
+            "f": self._begin_formula,
+            "v": self._begin_value,
+            "t": self._begin_value,
+            "rPh": self._begin_spoken,
+            "mergeCell": self._merge,
+            "col": self._columns,
+        }
+
+    def begin(self, tag: str, given: dict[str, str]) -> None:
+        act = self._begin.get(tag) or self._begin.get(local(tag))
+        if act:
+            act(given)
+
+    def end(self, tag: str) -> None:
+        name = tag if ":" not in tag else local(tag)
+        if name in ("v", "t"):
+            self._listens = False
+        elif name == "c":
+            self._end_cell()
+        elif name == "row":
+            self._end_row()
+        elif name == "rPh":
+            self._inside = False
+
+    def text(self, piece: str) -> None:
+        if self._listens and not self._inside:
+            self._value.append(piece)
+
+    def _begin_row(self, given: dict[str, str]) -> None:
+        number = given.get("r")
+        self._row = int(number) if number else self._row + 1
+        if not len(self.sheet.rows) < self._row <= LAST_ROW:
+            raise Broken("rows out of order")
+        self._hidden = given.get("hidden") in ("1", "true")
+        self._column, self._cells = 0, []
+
+    def _begin_cell(self, given: dict[str, str]) -> None:
+        reference = given.get("r")
+        column = place(reference)[1] if reference else self._column + 1
+        if not self._column < column <= LAST_COLUMN:
+            raise Broken("cells out of order")
+        self._column = column
+        self._kind, self._style = given.get("t", "n"), int(given.get("s", "0"))
+        self._formula, self._value = False, []
+
+    def _begin_formula(self, _: dict[str, str]) -> None:
+        self._formula = True
+
+    def _begin_value(self, _: dict[str, str]) -> None:
+        self._listens = True
+
+    def _begin_spoken(self, _: dict[str, str]) -> None:
+        self._inside = True
+
+    def _columns(self, given: dict[str, str]) -> None:
+        if given.get("hidden") in ("1", "true"):
+            first, last = int(given.get("min", "1")), int(given.get("max", "1"))
+            self.sheet.hidden_columns += range(first, min(last, LAST_COLUMN) + 1)[:100]
+
+    def _merge(self, given: dict[str, str]) -> None:
+        first, _, last = given.get("ref", "").partition(":")
+        if len(self.sheet.merged) >= MOST_MERGED:
+            raise TooLarge
+        self.sheet.merged.append(Merged(*place(first), *place(last or first)))
+
+    def _end_cell(self) -> None:
+        value, kind = "".join(self._value), self._kind
+        if self._formula:
+            self._note_formula(kept=bool(value) or kind == "str")
+        if not value:
+            return
+        if kind == "s":
+            value = self._shared(value)
+        elif kind == "n":
+            if self._style in self._book.dates:
+                value = date_of(float(value), from_1904=self._book.from_1904)
+            else:
+                value = number_text(value, self._decimal)
+        elif kind == "b":
+            value = "TRUE" if value == "1" else "FALSE"
+        elif kind in ("str", "inlineStr"):
+            value = written(value)
+        if value:
+            if self._column > MOST_COLUMNS:
+                raise TooWide(self._row)
+            self._cells += [""] * (self._column - 1 - len(self._cells))
+            self._cells.append(value)
+
+    def _shared(self, value: str) -> str:
+        try:
+            return self._book.texts[int(value)]
+        except IndexError as error:
+            raise Broken("texts") from error
+
+    def _note_formula(self, *, kept: bool) -> None:
+        self.sheet.formulas += 1
+        if not kept and len(self.sheet.valueless) < LISTED:
+            self.sheet.valueless.append(f"{letters(self._column)}{self._row}")
+
+    def _end_row(self) -> None:
+        sheet = self.sheet
+        if not self._cells:
+            return
+        sheet.rows += [""] * (self._row - 1 - len(sheet.rows))
+        line = BETWEEN.join(self._cells)
+        sheet.rows.append(line)
+        sheet.width = max(sheet.width, len(self._cells))
+        self._size += len(line) + 1
+        if max(self._size, self._row * sheet.width) > MOST_UNPACKED:
+            raise TooLarge
+        if self._hidden:
+            sheet.hidden.append(self._row)
