@@ -1,5 +1,7 @@
 """The pages of an upload as data: reading, problems, what was understood."""
 
+from collections.abc import Iterable
+
 import pytest
 
 from server.accounts.viewer import LOCAL
@@ -7,10 +9,12 @@ from server.actions.commit_upload import commit_upload
 from server.actions.receive_upload import receive_upload
 from server.intake.mapping import Mapping
 from server.pages import upload_new, upload_problems, upload_reading, uploads
+from server.pages.form_fields import Field
 from server.sentences.pieces import plain
 from server.store.connect import Session
 from server.store.errors import Missing, Refused
 from tests.factories import BASIS, COLUMNS, NOON, checked_upload, counts_csv, stored_collection
+from tests.server.intake.workbooks import xlsx
 
 DEATHS = b"q1,sex,age,area,deaths\n2001,f,0,north,3\n2001,f,1+,north,9\n"
 
@@ -32,17 +36,66 @@ def test_a_single_collection_is_proposed(salt: Session) -> None:
         upload_new.build(salt, "reef", limit=1_000_000)
 
 
-def test_columns_are_proposed_with_how_sure_that_is(salt: Session) -> None:
+def lines(fields: Iterable[Field]) -> dict[str, Field]:
+    return {field.name: field for field in fields}
+
+
+def asked(built: upload_reading.UploadReadingPage) -> tuple[Field, ...]:
+    return (*built.asked.here, *built.asked.more)
+
+
+def basis_of(built: upload_reading.UploadReadingPage) -> tuple[str, str]:
+    fields = lines(built.asked.basis)
+    return fields["people"].value, fields["source"].value
+
+
+def test_columns_are_proposed_with_samples_and_how_sure_that_is(salt: Session) -> None:
     built = upload_reading.build(salt, received(salt, DEATHS))
     (file,) = built.files
-    fields = {field.name: field for field in file.fields}
-    assert fields["deaths.sex"].chosen == "sex"
-    assert fields["deaths.sex"].why == "sure: its heading says so"
-    assert fields["deaths.year"].chosen == "q1"
-    assert fields["deaths.year"].why == "likely: its values look like it"
-    assert (fields["deaths.status"].chosen, fields["deaths.status"].why) == ("", "")
+    fields = lines(file.columns)
+    assert fields["deaths.sex"].value == "sex"
+    assert fields["deaths.sex"].hint == "f; sure: its heading says so"
+    assert fields["deaths.year"].value == "q1"
+    assert fields["deaths.year"].hint == "2001; likely: its values look like it"
+    assert lines(file.others)["deaths.status"].value == ""
     assert built.table("deaths").rows[0].cells == ("2001", "f", "0", "north", "3")
     assert plain(built.answer).startswith("The file was read.")
+    assert built.lead == ()
+
+
+def test_what_a_file_does_not_say_is_told_first_and_nothing_is_chosen(salt: Session) -> None:
+    content = DEATHS.replace(b",f,", b",1,").replace(b",9\n", b",1.209\n")
+    built = upload_reading.build(salt, received(salt, content))
+    assert plain(built.lead[0]) == (
+        "The files do not say by themselves: how numbers are written; which sex is meant by “1”."
+    )
+    asked = lines(built.files[0].asked)
+    assert {name: asked[name].value for name in ("deaths.marks", "deaths.sex.0")} == {
+        "deaths.marks": "",
+        "deaths.sex.0": "",
+    }
+    assert "“1.209” can be read in two ways" in asked["deaths.marks"].hint
+    assert "1.234,5" in asked["deaths.marks"].hint
+
+
+def test_totals_and_counts_without_an_age_are_shown_with_the_choice(salt: Session) -> None:
+    more = b"2001,f,Total,north,12\n2001,f,Unknown,north,1\n"
+    built = upload_reading.build(salt, received(salt, DEATHS + more))
+    assert "never counted twice: age “Total”." in built.files[0].found
+    choice = lines(built.asked.here)["unstated_age"]
+    assert "“Unknown”" in choice.label
+    assert (choice.value, [value for value, _ in choice.options]) == ("", ["spread", "left_out"])
+
+
+def test_a_workbook_shows_its_sheets(salt: Session) -> None:
+    row = (2001, "f", "0", "north", 3)
+    table = [("year", "sex", "age", "area", "deaths"), row]
+    book = xlsx([("by hand",)], name="Notes", more={"Table 2": table})
+    built = upload_reading.build(salt, received(salt, book))
+    sheet = lines(built.files[0].form)["deaths.sheet"]
+    assert [value for value, _ in sheet.options] == ["Notes", "Table 2"]
+    assert sheet.value == "Table 2"
+    assert "deaths.encoding" not in lines(built.files[0].form)
 
 
 def test_a_file_that_is_no_table_is_not_said_to_be_read(salt: Session) -> None:
@@ -54,10 +107,9 @@ def test_a_file_that_is_no_table_is_not_said_to_be_read(salt: Session) -> None:
 def test_what_was_stated_for_a_file_goes_before_its_headings(salt: Session) -> None:
     upload = checked_upload(salt, counts_csv(), mapping=Mapping(year="age", whole="isle"))
     built = upload_reading.build(salt, upload.id)
-    fields = {field.name: field.chosen for field in built.files[0].fields}
-    assert fields["counts.year"] == "age"
-    assert built.asked.mapping.whole == "isle"
-    assert built.asked.basis == BASIS
+    assert lines(built.files[0].columns)["counts.year"].value == "age"
+    assert lines(asked(built))["whole"].value == "isle"
+    assert basis_of(built) == (BASIS.people, BASIS.source)
 
 
 def test_the_last_edition_proposes_reading_and_basis_but_no_provisional_years(
@@ -73,10 +125,16 @@ def test_the_last_edition_proposes_reading_and_basis_but_no_provisional_years(
     upload = checked_upload(salt, counts_csv(), mapping=own)
     commit_upload(salt, upload_id=upload.id, note="first", by=LOCAL, now=NOON)
     built = upload_reading.build(salt, received(salt, counts_csv(years=(2003,)), "counts"))
-    assert (built.asked.mapping.whole, built.asked.provisional) == ("isle", "")
-    assert built.asked.basis == BASIS
+    fields = lines(asked(built))
+    assert (fields["whole"].value, fields["provisional"].value) == ("isle", "")
+    assert basis_of(built) == (BASIS.people, BASIS.source)
+    assert built.files[0].notes[0].startswith("Proposed as it was read for edition 1.")
     other = upload_reading.build(salt, received(salt, DEATHS, "deaths"))
-    assert other.asked.mapping.whole == ""  # no file of deaths alone was read before
+    assert lines(asked(other))["whole"].value == ""  # no file of deaths alone was read before
+    assert other.files[0].notes == ()
+    changed = counts_csv(years=(2003,)).replace(b"area", b"district", 1)
+    lost = upload_reading.build(salt, received(salt, changed, "counts"))
+    assert "edition 1, which had area, code in “area”." in lost.files[0].notes[0]
 
 
 def test_an_edition_has_no_reading_to_correct(salt: Session) -> None:
@@ -117,7 +175,7 @@ def test_a_sound_upload_says_what_was_understood(salt: Session) -> None:
     }
     assert built.making is not None
     assert built.making.possible
-    assert (built.making.button, built.making.may_replace) == ("Make edition 1", False)
+    assert built.making.button == "Make edition 1"
 
 
 def test_the_list_says_where_each_upload_stands(salt: Session) -> None:
