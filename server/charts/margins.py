@@ -4,7 +4,7 @@ from server.charts.chart import Chart, Series
 from server.charts.scales import decimals
 from server.charts.template import CHARACTER, Measure
 
-LONGEST_NARROW = 24  # characters of a row's name on the phone
+LONGEST_NARROW = 26  # characters of a row's name on the phone
 ENDS = 28  # px between the last point and the edge, beside the label itself
 
 

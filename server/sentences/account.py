@@ -87,7 +87,7 @@ def whole_only(label: str, who: str, amount: float, decimals: int, unit: str) ->
 def how(parts: int, orders: int, all_: int) -> Sentence:
     """How the parts were told apart."""
     if parts < 2:
-        return phrase(_("One thing differs, so all of the difference is its."))
+        return phrase(_("One thing differs, so all of the difference is owed to it."))
     if orders < all_:
         return phrase(
             _(
