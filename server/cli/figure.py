@@ -57,7 +57,7 @@ def add(commands: Commands) -> None:
 def run(asked: argparse.Namespace, config: Config) -> int:
     with opened(config) as session:
         number = newest(session, asked.collection) if asked.edition is None else asked.edition
-        known = heading(session, asked.collection, number)
+        known = heading(session, asked.collection, number).released
         held = holdings(session, asked.collection, number)
         found = [series(session, known, _question(asked, key, held)) for key in asked.indicator]
     told = _twin(known, found)

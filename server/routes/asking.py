@@ -10,6 +10,7 @@ from server.accounts.viewer import LOCAL, Right, Viewer
 from server.pages.page import Page
 from server.results.holdings import NotInEdition
 from server.results.questions import CODE, BadValue, Question, address
+from server.results.releasing import FULL
 from server.sentences.text import _
 from server.store import collections, editions
 from server.store.connect import Session
@@ -98,6 +99,8 @@ def ask(
     known = heading(
         session, code(collection), newest(session, collection) if edition is None else edition
     )
+    if getattr(question, "figures", "") != FULL:
+        known = known.released
     if complete is not None:
         question = complete(session, known, question)
     place = address(

@@ -1,8 +1,9 @@
 """What stands over every pinned page, and all that an unchanged page must know: one statement."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from typing import Self
 
-from sqlalchemy import and_, bindparam, select
+from sqlalchemy import and_, bindparam, func, select
 from sqlalchemy.orm import Session
 
 from server.store import collections, editions
@@ -10,8 +11,14 @@ from server.store.base import LARGEST
 from server.store.errors import Missing
 from server.store.records import Collection as CollectionRecord
 from server.store.records import Edition as EditionRecord
-from server.store.tables import BasisRange, Collection, Edition, EditionEvent
+from server.store.tables import BasisRange, Collection, Edition, EditionEvent, Mask, Policy
 
+_POLICY = (
+    select(func.max(Policy.number))
+    .where(Policy.collection_id == Collection.id)
+    .correlate(Collection)
+    .scalar_subquery()
+)
 # made once: putting the statement together takes longer than running it
 _STATEMENT = (
     select(
@@ -22,11 +29,21 @@ _STATEMENT = (
         Collection.revision,
         Collection.made.label("opened"),
         editions.standing_number(Collection.id).label("newest"),
+        _POLICY.label("policy"),
+        Mask.digest.label("mask"),
         *editions.COLUMNS,
     )
     .outerjoin(
         Edition,
         and_(Edition.collection_id == Collection.id, Edition.number == bindparam("number")),
+    )
+    .outerjoin(
+        Mask,
+        and_(
+            Mask.collection_id == Collection.id,
+            Mask.edition == Edition.number,
+            Mask.policy == _POLICY,
+        ),
     )
     .outerjoin(BasisRange, editions.ITS_BASIS)
     .outerjoin(EditionEvent, editions.ITS_EVENTS)
@@ -39,6 +56,16 @@ class Heading:
     collection: CollectionRecord
     edition: EditionRecord
     newest: int | None  # number of the newest standing edition; None: all are withdrawn
+    policy: int | None = None  # number of the policy that holds; None: everything is shown
+    mask: str = ""  # digest of the edition and its mask under that policy
+
+    @property
+    def released(self) -> Self:
+        """The same for those who may not know what is withheld: the digest of the counts would let
+        them try whether a guess is right, that of the mask is made with a secret."""
+        if self.policy is None:
+            return self
+        return replace(self, edition=replace(self.edition, digest=self.mask))
 
 
 def heading(session: Session, collection_code: str, number: int) -> Heading:
@@ -60,4 +87,6 @@ def heading(session: Session, collection_code: str, number: int) -> Heading:
         ),
         editions.of_rows(rows)[0],
         row.newest,
+        row.policy,
+        row.mask or "",
     )

@@ -13,7 +13,7 @@ from typing import Any
 from sqlalchemy import Select, String, and_, cast, false, func, insert, literal, select, union_all
 from sqlalchemy.orm import Session
 
-from server.store import collections, schedules, tables
+from server.store import collections, policies, schedules, tables
 from server.store.errors import Refused
 from server.store.policies import read
 from server.store.records import Hidden, Key, Mask, Selection, Terms, Vector
@@ -146,14 +146,23 @@ def of_editions(session: Session, collection: str, policy: int) -> dict[int, Kep
 def write(
     session: Session, collection: str, edition: int, policy: int, kept: Kept, *, at: dt.datetime
 ) -> None:
-    """Keep a mask, inside a transaction."""
+    """Keep a mask, inside a transaction after its edition and policy. Its digest stands for both
+    the edition's counts and the mask to whoever reads what is released."""
     content = packed(kept)
+    row = tables.Edition
+    counts = session.scalar(
+        select(row.digest).where(
+            row.collection_id == collections.id_of(collection), row.number == edition
+        )
+    )
+    with_secret = (policies.secret(session, collection, policy), counts or "")
+    digest = hashlib.sha256("\n".join(with_secret).encode() + zlib.decompress(content))
     session.execute(
         insert(tables.Mask).values(
             collection_id=collections.id_of(collection),
             edition=edition,
             policy=policy,
-            digest=hashlib.sha256(zlib.decompress(content)).hexdigest(),
+            digest=digest.hexdigest(),
             content=content,
             made=at,
         )

@@ -2,6 +2,7 @@
 
 import datetime as dt
 import json
+import secrets
 from dataclasses import asdict
 
 from sqlalchemy import func, insert, select
@@ -9,6 +10,8 @@ from sqlalchemy.orm import Session
 
 from server.store import collections, tables
 from server.store.records import Policy, Terms
+
+_SECRET = "secret"
 
 
 def newest(session: Session, collection: str) -> Policy | None:
@@ -29,7 +32,18 @@ def listing(session: Session, collection: str) -> tuple[Policy, ...]:
 
 def read(text: str) -> Terms:
     """Terms as they are stored."""
-    return Terms(**json.loads(text))
+    return Terms(**{name: value for name, value in json.loads(text).items() if name != _SECRET})
+
+
+def secret(session: Session, collection: str, number: int) -> str:
+    """What digests of what is released are made with, so that nobody can try guesses on them."""
+    row = tables.Policy
+    text = session.scalar(
+        select(row.terms).where(
+            row.collection_id == collections.id_of(collection), row.number == number
+        )
+    )
+    return str(json.loads(text or "{}").get(_SECRET, ""))
 
 
 def write(
@@ -44,7 +58,7 @@ def write(
         insert(row).values(
             collection_id=locked.id,
             number=number,
-            terms=json.dumps(asdict(terms), sort_keys=True),
+            terms=json.dumps(asdict(terms) | {_SECRET: secrets.token_hex(16)}, sort_keys=True),
             made=at,
             by=by,
             note=note,
