@@ -7,6 +7,7 @@ import numpy as np
 from engine.ages import AgeGrid, Array
 
 ROUND = 5  # ages that end in 0 or 5 are those people name when they do not know theirs
+ENOUGH_PEOPLE = 100_000  # women and men, from which the accuracy index is told: common practice
 FIVES = AgeGrid(tuple(range(0, 76, 5)))
 
 

@@ -4,7 +4,7 @@ from dataclasses import dataclass
 from typing import ClassVar
 
 from server.exports.table import Column, Row, Table
-from server.intake.checks import CHAPTERS
+from server.intake.checks import CHAPTERS, DOUBTS
 from server.intake.checks.alarms import FalseAlarms, kept
 from server.intake.problems import Kind
 from server.pages.entry import Entry
@@ -44,7 +44,7 @@ def build() -> ChecksPage:
             _(one.question),
             tuple(_entry(check, alarms) for check in one.checks),
         )
-        for one in CHAPTERS
+        for one in sorted(CHAPTERS, key=lambda one: one.key not in DOUBTS)
     )
     checks = [check for one in CHAPTERS for check in one.checks]
     errors = sum(check.severity == "error" for check in checks)

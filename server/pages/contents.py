@@ -4,11 +4,12 @@ from dataclasses import dataclass, replace
 from typing import ClassVar
 
 from server.exports.table import Table
-from server.pages import breaks, contents_tables, frames
+from server.pages import breaks, contents_tables, frames, provisional
 from server.pages.page import Frame, Notice, Page
 from server.results.changes import ChangesQuestion
 from server.results.contents import Contents, ContentsQuestion, contents
 from server.results.holdings import Holdings
+from server.results.quality import QualityQuestion
 from server.results.questions import (
     DEFAULT_INDICATOR,
     ComparisonQuestion,
@@ -21,6 +22,7 @@ from server.results.questions import (
 from server.sentences import contents as say
 from server.sentences import names
 from server.sentences import uploads as uploads_say
+from server.sentences.basis import Told
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
 from server.store import editions, uploads
@@ -62,6 +64,7 @@ class ContentsPage(Page):
     choice: Choice | None  # None: the edition holds nothing
     basis: tuple[Sentence, ...]
     broken: bool  # breaks or years of shock are stated
+    revised: bool  # provisional years were handed in again
     editions: contents_tables.Listing  # of the whole collection: it changes, the figures do not
     standing: Standing
 
@@ -71,18 +74,29 @@ def build(session: Session, heading: Heading, question: ContentsQuestion) -> Con
     held, collection, edition = found.holdings, heading.collection, heading.edition
     choice = _choice(heading, held) if held.periods else None
     erased = uploads.erasures(session, collection.code)
+    moves = provisional.table(session, heading, held, question.settings, question.figures)
     return ContentsPage(
         frame=_frame(heading, question, erased.get(edition.number, ())),
         answer=say.answer(collection.name, edition.number, held.periods, len(held.areas)),
         lead=lead(found),
-        tables=_tables(found),
+        tables=(*_tables(found), *([moves] if moves.rows else [])),
+        cautions=frames.cautions(beside=[_moved_before(session, found)], below=[]),
         twins=frames.twins(heading, question) if found.newest else {},
         questions=_questions(heading, question, held, choice) if choice else (),
         choice=choice,
-        basis=frames.basis(edition.basis),
+        basis=(*frames.basis(edition.basis), say.quality(_quality(heading, question))),
         broken=bool(held.breaks),
+        revised=bool(moves.rows),
         editions=_editions(session, heading, erased),
         standing=_standing(heading),
+    )
+
+
+def _moved_before(session: Session, found: Contents) -> Told:
+    asked, held = found.question, found.holdings
+    any_ = "provisional" in held.status.values()
+    return provisional.caution(
+        session, found.heading, held, asked.settings, asked.figures, any_=any_
     )
 
 
@@ -90,6 +104,11 @@ def _tables(found: Contents) -> tuple[Table, ...]:
     newest = [contents_tables.areas(found, found.newest)] if found.newest else []
     held = found.holdings
     return (*newest, *([breaks.table(held.breaks, held.name)] if held.breaks else []))
+
+
+def _quality(heading: Heading, question: ContentsQuestion) -> str:
+    asked = QualityQuestion(question.figures, question.settings)
+    return address(heading.collection.code, heading.edition.number, asked)
 
 
 def _editions(

@@ -117,6 +117,14 @@ def standing(*, stands: bool, withdrawn: dt.date | None) -> str:
     return _("stands") if stands else _("superseded")
 
 
+def quality(place: str) -> Sentence:
+    """Where the counts themselves are judged."""
+    return phrase(
+        _("{question} What is there, what the checks find in it, and what its owner states."),
+        question=Piece(_("How good are these counts?"), place),
+    )
+
+
 def questions(
     *,
     population: str,

@@ -144,6 +144,15 @@ class Edition:
 
 
 @dataclass(frozen=True, slots=True)
+class Statement:
+    """What an analyst stated of an edition's quality, by question."""
+
+    at: dt.datetime  # UTC
+    by: str
+    answers: Mapping[str, str]
+
+
+@dataclass(frozen=True, slots=True)
 class Collection:
     id: int
     code: str

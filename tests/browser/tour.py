@@ -34,7 +34,9 @@ READ = {
     f"?of=asr_esp2013&area=quillmere&sex=f&sex=m&from=2001&to=2023{_CHOICES}",
     "trend-undefined": "/c/quillmere/2/trend"
     f"?of=H&area=quillmere&area=stonereach&sex=f&from=1999&to=2023{_CHOICES}",
+    "quality": "/c/quillmere/2/quality?figures=released&settings=almanac-1",
     "methods": "/methods",
+    "checks": "/checks",
     "words": "/words",
     "uploads": "/uploads",
     "upload-new": "/uploads/new",

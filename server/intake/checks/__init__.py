@@ -29,7 +29,8 @@ from server.intake.checks import (
     unstated,
     worked_out,
 )
-from server.intake.problems import Kind
+from server.intake.ledger import Ledger
+from server.intake.problems import Fault, Kind
 
 
 @dataclass(frozen=True, slots=True)
@@ -106,3 +107,15 @@ OF_LEDGER = (
     *stated_ages.CHECKS,
     *completeness.CHECKS,
 )
+DOUBTS = ("years", "ages", "completeness")  # chapters that ask about figures, not about a file
+
+
+def doubts(ledger: Ledger) -> list[tuple[str, str, list[Fault]]]:
+    """What the checks of figures find: key of the check, its chapter, its faults."""
+    return [
+        (check.key, one.key, list(check.find(ledger)))
+        for one in CHAPTERS
+        if one.key in DOUBTS
+        for family in one.families
+        for check in family.CHECKS
+    ]

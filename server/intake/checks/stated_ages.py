@@ -5,14 +5,13 @@ from collections.abc import Callable, Iterator
 import numpy as np
 
 from engine.ages import AgeGrid, Array
-from engine.quality import age_sex_accuracy, myers, whipple
+from engine.quality import ENOUGH_PEOPLE, age_sex_accuracy, myers, whipple
 from server.intake.cells import YEARS, Flags, Ints, parts_of
 from server.intake.checks.check import Check, several
 from server.intake.ledger import Ledger
 from server.intake.problems import Fault, Value
 from server.intake.schedules import Block
 
-ENOUGH = 100_000  # people, women and men together, from which the accuracy index may be read
 FEW = 5_000  # people of one sex under which digits are chance
 WHIPPLE, MYERS, ACCURACY = 110.0, 5.0, 20.0
 SURE = 5.0
@@ -52,7 +51,7 @@ def _accuracy(ledger: Ledger) -> Iterator[Fault]:
         found = age_sex_accuracy(block.grid, block.values[women], block.values[men]).index
         people = (block.values[women] + block.values[men]).sum(axis=-1)
         with np.errstate(invalid="ignore"):
-            off = (found > ACCURACY + accuracy_chance(people)) & (people >= ENOUGH)
+            off = (found > ACCURACY + accuracy_chance(people)) & (people >= ENOUGH_PEOPLE)
         yield from _told(ledger, block, women, found, off)
 
 
