@@ -10,7 +10,7 @@ from server.exports.table import Table
 from server.pages import comparison_charts as charts
 from server.pages import comparison_contributions as contributions
 from server.pages import comparison_tables as tables
-from server.pages import frames
+from server.pages import frames, provisional
 from server.pages.choices import Grouped, Offer, offer
 from server.pages.choices import indicators as offered
 from server.pages.page import Caution, Frame, Page
@@ -23,7 +23,7 @@ from server.results.questions import (
     PopulationYearQuestion,
     address,
 )
-from server.sentences import basis, kinds, names
+from server.sentences import basis, kinds, names, sharing
 from server.sentences import breaks as of_breaks
 from server.sentences import comparison as say
 from server.sentences import contributions as ages_say
@@ -77,7 +77,7 @@ def build(session: Session, heading: Heading, question: ComparisonQuestion) -> C
         lead=_lead(found),
         tables=_tables(found),
         charts=drawn,
-        cautions=_cautions(found),
+        cautions=_cautions(found, _moved_before(session, found)),
         twins=frames.twins(heading, question),
         drawn=frozenset(chart.key for chart in drawn),
         groups=tuple((table.key, table.title) for table in tables.further(found)),
@@ -203,22 +203,32 @@ def _computed(found: Comparison) -> tuple[Sentence, ...]:
             " simulated pairs. Arriaga’s formula stands beside them."
         ),
     )
-    return (*basis.computed(found.settings), path)
+    shared_out = sharing.computed(found.this.panel, found.that.panel)
+    return (*basis.computed(found.settings), path, *shared_out)
 
 
-def _cautions(found: Comparison) -> tuple[Caution, ...]:
+def _moved_before(session: Session, found: Comparison) -> basis.Told:
+    asked, sides = found.question, (found.this, found.that)
+    any_ = any(side.loaded.status == "provisional" for side in sides)
+    return provisional.caution(
+        session, found.heading, found.holdings, asked.settings, asked.figures, any_=any_
+    )
+
+
+def _cautions(found: Comparison, moved_before: basis.Told) -> tuple[Caution, ...]:
     sides = (found.this, found.that)
     both = tables.pair(found)
     lived = {float(side.panel.exposure.sum()): side.of for side in sides}
     fewest = min(lived)
-    provisional = {
+    years = {
         tables.named(found, side.of).period for side in sides if side.loaded.status == "provisional"
     }
     modelled = found.settings.open_interval != "one_over_m"
     return frames.cautions(
         beside=[
             caution(found.this.loaded, found.that.loaded),
-            basis.provisional(sorted(provisional)),
+            basis.provisional(sorted(years)),
+            moved_before,
             of_breaks.lies_between(
                 found.holdings.parted(*_outer(found), found.this.of.area, found.that.of.area),
                 *sorted((both.that.period, both.this.period)),

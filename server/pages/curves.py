@@ -25,7 +25,7 @@ from server.results.questions import (
     Question,
     address,
 )
-from server.sentences import basis, curve_methods, names
+from server.sentences import basis, curve_methods, names, sharing
 from server.sentences import curves as say
 from server.sentences.pieces import Piece, Sentence
 from server.sentences.reasons import reason
@@ -65,15 +65,20 @@ def build(session: Session, heading: Heading, question: CurvesQuestion) -> Curve
         laws=_laws(found),
         single=say.single(found.panel.grid.label) if found.single else (),
         related=_related(found),
-        computed=curve_methods.computed(
-            found.settings,
-            grouped=found.single is not None,
-            whole_area=found.related.area if found.related else "",
-        ),
+        computed=_computed(found),
         basis=frames.basis(heading.edition.basis),
         further=_further(found),
         choice=choice(heading, found.holdings, question),
     )
+
+
+def _computed(found: Curves) -> tuple[Sentence, ...]:
+    methods = curve_methods.computed(
+        found.settings,
+        grouped=found.single is not None,
+        whole_area=found.related.area if found.related else "",
+    )
+    return (*methods, *sharing.computed(found.panel, fits=True))
 
 
 def _charts(found: Curves, source: str) -> tuple[Chart, ...]:

@@ -10,7 +10,7 @@ from engine.settings import span
 from engine.standardisation import FEW_DEATHS, few_deaths
 from server.charts.chart import Chart
 from server.exports.table import Table
-from server.pages import frames
+from server.pages import frames, provisional
 from server.pages import population_year_living as living
 from server.pages import population_year_models as models
 from server.pages import population_year_rates as rates
@@ -78,7 +78,7 @@ def build(
         lead=_lead(found),
         tables=_tables(found),
         charts=charts,
-        cautions=_cautions(found),
+        cautions=_cautions(found, _moved_before(session, found)),
         twins=frames.twins(heading, question),
         drawn=frozenset(chart.key for chart in charts),
         groups=tuple((table.key, table.title) for table in tables.further(found)),
@@ -178,7 +178,22 @@ def _lead(found: Findings) -> tuple[Sentence, ...]:
     return tuple(sentence for sentence in said if sentence)
 
 
-def _cautions(found: Findings) -> tuple[Caution, ...]:
+def _provisional(found: Findings) -> list[str]:
+    """The years shown that are provisional."""
+    sides = [(found.period, found.loaded)]
+    sides += [(found.before.period, found.before.loaded)] if found.before else []
+    return [period for period, loaded in sides if loaded.status == "provisional"]
+
+
+def _moved_before(session: Session, found: Findings) -> basis.Told:
+    asked, any_ = found.question, bool(_provisional(found))
+    held = found.holdings
+    return provisional.caution(
+        session, found.heading, held, asked.settings, asked.figures, any_=any_
+    )
+
+
+def _cautions(found: Findings, moved_before: basis.Told) -> tuple[Caution, ...]:
     before, rate, whole = found.before, found.chain.rates, tables.whole_of(found)
     panel = found.loaded.panel
     joined = [label for label, is_so in zip(panel.grid.labels, rate.joined, strict=True) if is_so]
@@ -189,13 +204,11 @@ def _cautions(found: Findings) -> tuple[Caution, ...]:
         )
         if deaths == 0 and years > 0
     ]
-    provisional = [found.period] if found.loaded.status == "provisional" else []
-    if before and before.loaded.status == "provisional":
-        provisional.append(before.period)
     return frames.cautions(
         beside=[
             caution(*_sides(found)),
-            basis.provisional(provisional),
+            basis.provisional(_provisional(found)),
+            moved_before,
             breaks.mixed(
                 found.holdings.mixed(found.of, found.settings.years),
                 names.population(found.of.sex, found.name),

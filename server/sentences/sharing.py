@@ -1,5 +1,6 @@
 """Counts that did not state their sex, age or area: what was done with them."""
 
+import math
 from collections.abc import Mapping
 
 from engine.panel import Panel
@@ -62,18 +63,25 @@ def how() -> str:
     )
 
 
-def computed(panel: Panel) -> Sentence:
-    """How a population's deaths came about; empty where all of them were stated."""
-    shared = float(panel.deaths.sum() - panel.counts.sum())
-    if panel.counted is None or not shared > TINY * float(panel.deaths.sum()):
+def computed(*panels: Panel, fits: bool = False) -> tuple[Sentence, ...]:
+    """How the deaths of populations on a page came about; empty where all of them were stated. With
+    `fits` the page has curves fitted to them."""
+    deaths = sum(float(panel.deaths.sum()) for panel in panels)
+    shared = deaths - sum(float(panel.counts.sum()) for panel in panels)
+    if not shared > TINY * deaths:
         return ()
-    return phrase(
-        "{name} {sentence}",
-        name=Piece(_("Not stated."), emphasis="strong"),
-        sentence=_(
-            "{count} of the {deaths} deaths did not state their sex, age or area. They were shared"
-            " out in proportion to those that do; intervals allow for chance in the deaths stated.",
-            count=number(shared, 1 if shared < 100 else 0),
-            deaths=whole(float(panel.deaths.sum())),
-        ),
+    said = _(
+        "{count} of the {deaths} deaths did not state their sex, age or area. They were shared out"
+        " in proportion to those that do; intervals allow for chance in the deaths stated.",
+        count=number(shared, decimals(round(shared, 6))),
+        deaths=whole(deaths),
     )
+    if fits:
+        narrow = _(
+            "Curves are fitted as if all had been stated, which makes their bands narrower by"
+            " {percent} %.",
+            percent=number(100 * (1 - math.sqrt(1 - shared / deaths)), 1),
+        )
+        said = f"{said} {narrow}"
+    name = Piece(_("Not stated."), emphasis="strong")
+    return (phrase("{name} {sentence}", name=name, sentence=said),)
