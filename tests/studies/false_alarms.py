@@ -19,7 +19,7 @@ import numpy as np
 from engine.ages import AgeGrid, Array
 from engine.streams import generator
 from server.intake.checks import CHAPTERS
-from server.intake.checks.alarms import KEPT, Data, FalseAlarms
+from server.intake.checks.alarms import KEPT, CleanCounts, FalseAlarms
 from server.intake.mapping import Mapping
 from server.intake.parsing import Handed, parse
 from tests.factories import gompertz_rates
@@ -123,7 +123,7 @@ def measure(repeats: int, *, only: str = "") -> FalseAlarms:
             continue
         told = sum((alarms(one) for one in several), Counter())
         lines = sum(one.deaths[..., 0].size for one in several)
-        data.append(Data(name, lines))
+        data.append(CleanCounts(name, lines))
         rates[name] = {key: 1000 * count / lines for key, count in told.items()}
     return FalseAlarms(dt.date.today().isoformat(), tuple(data), rates)
 

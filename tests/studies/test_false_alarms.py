@@ -47,7 +47,7 @@ def test_what_is_kept_holds_the_bound_and_names_checks_that_are() -> None:
 
 
 def test_rates_are_means_over_all_lines() -> None:
-    data = (false_alarms.Data("small", 100), false_alarms.Data("large", 300))
+    data = (false_alarms.CleanCounts("small", 100), false_alarms.CleanCounts("large", 300))
     told = FalseAlarms("2026-12-01", data, {"small": {"a": 8.0}, "large": {}})
     rate = told.of("a")
     assert (rate.worst, rate.where, rate.mean) == (8.0, "small", 2.0)

@@ -10,7 +10,7 @@ KEPT = Path(__file__).with_name("false_alarms.json")
 
 
 @dataclass(frozen=True, slots=True)
-class Data:
+class CleanCounts:
     """Clean counts that were looked at."""
 
     name: str
@@ -29,7 +29,7 @@ class Rate:
 @dataclass(frozen=True, slots=True)
 class FalseAlarms:
     measured: str  # ISO date
-    data: tuple[Data, ...]
+    data: tuple[CleanCounts, ...]
     rates: Mapping[str, Mapping[str, float]]  # by name of the data and key of the check
 
     @property
@@ -54,7 +54,7 @@ class FalseAlarms:
     @classmethod
     def from_json(cls, text: str) -> "FalseAlarms":
         stored = json.loads(text)
-        data = tuple(Data(**one) for one in stored["data"])
+        data = tuple(CleanCounts(**one) for one in stored["data"])
         return cls(stored["measured"], data, stored["rates"])
 
 

@@ -13,7 +13,7 @@ from server.intake.problems import Problem
 from server.intake.standing import Standing
 from server.store.records import Area, Key
 from tests.server.intake.cases import CASES, ONE, SOUND, WOMEN, Case
-from tests.server.intake.data_cases import DATA_CASES
+from tests.server.intake.doubts import DATA_CASES
 from tests.server.intake.list_cases import BASIS_CASES, LIST_CASES
 from tests.server.intake.tables import (
     births,

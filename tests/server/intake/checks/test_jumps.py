@@ -11,7 +11,7 @@ from server.intake.checks.jumps import AIM, LIMITS, SPREAD, local_level, tail
 from server.intake.parsing import parse
 from server.intake.problems import Problem
 from server.intake.standing import Standing
-from tests.server.intake.data_cases import stood
+from tests.server.intake.doubts import stood
 from tests.server.intake.lives import SINGLE, lives, numbered, start, times
 from tests.server.intake.tables import YEARS, Row, counts, deaths, rows, setting, where, without
 
