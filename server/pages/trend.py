@@ -7,7 +7,7 @@ import numpy as np
 
 from engine.estimates import Reason
 from engine.settings import span
-from server.pages import frames, trend_chart
+from server.pages import frames, provisional, trend_chart
 from server.pages import trend_tables as tables
 from server.pages.choices import Grouped, Offer, indicators, offer
 from server.pages.page import Caution, Page
@@ -92,7 +92,7 @@ def build(session: Session, heading: Heading, question: TrendQuestion) -> TrendP
         lead=tuple(sentence for sentence in lead if sentence),
         tables=(tables.years(found), tables.estimates(found), *tables.breaks(found)),
         charts=(chart,) if chart else (),
-        cautions=_cautions(found),
+        cautions=_cautions(found, _moved_before(session, found)),
         twins=frames.twins(heading, question),
         drawn=chart is not None,
         broken=bool(found.broken),
@@ -186,8 +186,16 @@ def _headline(found: Series) -> Headline:
     return Headline(label, found.indicator.unit, float(here), there)
 
 
-def _cautions(found: Series) -> tuple[Caution, ...]:
-    provisional = {
+def _moved_before(session: Session, found: Series) -> basis.Told:
+    asked, any_ = found.question, any("provisional" in status for status in found.status)
+    held = found.holdings
+    return provisional.caution(
+        session, found.heading, held, asked.settings, asked.figures, any_=any_
+    )
+
+
+def _cautions(found: Series, moved_before: basis.Told) -> tuple[Caution, ...]:
+    years = {
         period
         for status in found.status
         for period, one in zip(found.periods, status, strict=True)
@@ -203,7 +211,8 @@ def _cautions(found: Series) -> tuple[Caution, ...]:
     return frames.cautions(
         beside=[
             withholding.behind(protected),
-            basis.provisional(sorted(provisional)),
+            basis.provisional(sorted(years)),
+            moved_before,
             basis.pooled(found.settings),
             basis.smoothed(found.settings),
             say.no_two(found.indicator),

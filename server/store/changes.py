@@ -4,7 +4,7 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 from typing import Any
 
-from sqlalchemy import or_, select
+from sqlalchemy import CTE, func, or_, select
 from sqlalchemy.orm import Session, aliased
 from sqlalchemy.sql import ColumnElement
 
@@ -90,10 +90,11 @@ def lineage(session: Session, collection: str, number: int) -> tuple[int, ...]:
 
 def once_provisional(
     session: Session, collection: str, number: int, measures: Iterable[str]
-) -> dict[Key, tuple[Held, ...]]:
-    """Every version up to edition `number` of the schedules of those areas and years of which one
-    was provisional and has been superseded by then; versions in the order of their editions. One
-    statement."""
+) -> dict[Key, tuple[tuple[int, Held], ...]]:
+    """Schedules of those areas and years of which one was provisional and has been superseded by
+    edition `number`: every version that held in it or in one it was built on, with the first of
+    these, in their order. One statement."""
+    line = _line(collection, number)
     earlier = aliased(Schedule)
     superseded = (
         select(earlier.id)
@@ -106,13 +107,31 @@ def once_provisional(
         )
         .exists()
     )
-    return _versions(
-        session,
-        collection,
-        Schedule.first <= number,
-        Schedule.measure.in_(tuple(measures)),
-        Schedule.cause == "",
-        superseded,
+    rows = session.execute(
+        select(*_COLUMNS, func.min(line.c.number).label("since"))
+        .join(Grid, Grid.id == Schedule.grid_id)
+        .join(line, Schedule.holds_in(line.c.number))
+        .where(
+            Schedule.collection_id == collections.id_of(collection),
+            Schedule.measure.in_(tuple(measures)),
+            Schedule.cause == "",
+            superseded,
+        )
+        .group_by(Schedule.id, Grid.starts)
+    ).all()
+    found: dict[Key, list[tuple[int, Held]]] = {}
+    for row in sorted(rows, key=lambda row: (row[:5], row.since)):
+        found.setdefault(Key(*row[:5]), []).append((row.since, _held(row)))
+    return {key: tuple(all_) for key, all_ in found.items()}
+
+
+def _line(collection: str, number: int) -> CTE:
+    """The edition, the one it was built on, and so on, inside another statement."""
+    of_collection = Edition.collection_id == collections.id_of(collection)
+    last = select(Edition.number, Edition.base).where(of_collection, Edition.number == number)
+    line = last.cte("line", recursive=True)
+    return line.union_all(
+        select(Edition.number, Edition.base).where(of_collection, Edition.number == line.c.base)
     )
 
 
