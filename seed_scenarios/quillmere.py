@@ -3,8 +3,24 @@
 import datetime as dt
 from dataclasses import replace
 
-from seed_scenarios.quillmere_counts import REGIONS, REVISED, WHOLE, YEARS, Counts, counted
-from seed_scenarios.quillmere_files import births_csv, deaths_csv, population_csv
+from seed_scenarios.quillmere_counts import (
+    CENSUS,
+    REBASED,
+    REGIONS,
+    REVISED,
+    WHOLE,
+    YEARS,
+    Counts,
+    counted,
+    recounted,
+)
+from seed_scenarios.quillmere_files import (
+    areas_csv,
+    births_csv,
+    breaks_csv,
+    deaths_csv,
+    population_csv,
+)
 from server.actions import LOCAL, Basis, Mapping, Session, Viewer
 from server.actions.check_upload import check_upload
 from server.actions.commit_upload import commit_upload
@@ -21,7 +37,10 @@ STORY = (
     "twice the country's, comes down to it within seven years from 2006. Little Auk is so small "
     "that its figures jump by chance alone. Stonereach closes its ages at 85 and over, and its "
     "pages show what that costs. 2023 is provisional: about one death in a hundred is not yet "
-    "reported. Edition 2 revises 2021 in Northlade, where deaths under inquest had been left out."
+    "reported. Tollbay was two districts up to 2004, and its files of these years still have their "
+    "codes. Edition 2 revises 2021 in Northlade, where deaths under inquest had been left out. "
+    "Edition 3 has the population that the census of 2021 found, back to 2012: fewer young adults "
+    "and fewer of the oldest than the register had, so that the years before 2012 stand apart."
 )
 OFFICE = Viewer("Statistical Office of Quillmere", LOCAL.rights)
 BASIS = Basis(
@@ -30,10 +49,13 @@ BASIS = Basis(
     population="midyear",
     population_date="1 July of each year",
     source="Statistical Office of Quillmere: civil register, population register",
+    vintage="population register, carried on from the census of 2001",
 )
+VINTAGE = "after the census of 2021, carried back to 2012"
 NOTES = (
     "First delivery: 1999 to 2022 final, 2023 provisional.",
     f"Revision of {REVISED} in Northlade: deaths under inquest, left out at first.",
+    f"Population from {REBASED} on after the census of {CENSUS}; deaths as they stood.",
 )
 _COLUMNS = Mapping(
     year="year",
@@ -51,26 +73,38 @@ MAPPINGS = {
     "births": replace(
         _COLUMNS, births="births", stillbirths="stillbirths", neonatal_deaths="neonatal_deaths"
     ),
+    "areas": Mapping(),
+    "breaks": Mapping(),
 }
+EVERYWHERE = (*(region.code for region in REGIONS), WHOLE.code)
 Files = dict[str, tuple[str, bytes]]  # role: name and content
 
 
 def build(session: Session, *, now: dt.datetime) -> None:
-    """Open the collection and hand in its two editions."""
+    """Open the collection and hand in its three editions."""
+    deliver(session, now=now)
+    recount(session, now=now)
+
+
+def deliver(session: Session, *, now: dt.datetime) -> None:
+    """The collection, its first delivery and the revision of one year: two editions."""
     create_collection(session, code=CODE, name=NAME, owner=OFFICE.name, by=OFFICE, now=now)
-    everywhere = (*(region.code for region in REGIONS), WHOLE.code)
-    _hand_in(
-        session,
-        _files(counted(revised=False), YEARS, everywhere),
-        note=NOTES[0],
-        now=now,
-    )
-    _hand_in(
-        session,
-        _files(counted(revised=True), (REVISED,), ("northlade", WHOLE.code)),
-        note=NOTES[1],
-        now=now,
-    )
+    files = _files(counted(revised=False), YEARS, EVERYWHERE)
+    files["areas"] = ("quillmere-areas.csv", areas_csv())
+    _hand_in(session, files, note=NOTES[0], now=now)
+    files = _files(counted(revised=True), (REVISED,), ("northlade", WHOLE.code))
+    _hand_in(session, files, note=NOTES[1], now=now)
+
+
+def recount(session: Session, *, now: dt.datetime) -> None:
+    """The population after the census, with the breaks it makes: one more edition."""
+    since = tuple(year for year in YEARS if year >= REBASED)
+    people = population_csv(recounted(counted(revised=True)), since, EVERYWHERE)
+    files = {
+        "population": ("quillmere-population-after-census.csv", people),
+        "breaks": ("quillmere-breaks.csv", breaks_csv()),
+    }
+    _hand_in(session, files, note=NOTES[2], now=now, basis=replace(BASIS, vintage=VINTAGE))
 
 
 def _files(counts: dict[str, Counts], years: tuple[int, ...], areas: tuple[str, ...]) -> Files:
@@ -81,7 +115,9 @@ def _files(counts: dict[str, Counts], years: tuple[int, ...], areas: tuple[str, 
     }
 
 
-def _hand_in(session: Session, files: Files, *, note: str, now: dt.datetime) -> None:
+def _hand_in(
+    session: Session, files: Files, *, note: str, now: dt.datetime, basis: Basis = BASIS
+) -> None:
     """One upload, from the bytes to an edition."""
     upload = receive_upload(
         session,
@@ -93,8 +129,8 @@ def _hand_in(session: Session, files: Files, *, note: str, now: dt.datetime) -> 
     map_upload(
         session,
         upload_id=upload.id,
-        mappings=MAPPINGS,
-        basis=BASIS,
+        mappings={role: MAPPINGS[role] for role in files},
+        basis=basis,
         by=OFFICE,
         now=now,
     )

@@ -23,7 +23,10 @@ STARTS = (0, 1, *range(5, 101, 5))
 _FIRST = 1880  # the projection begins here, so that nobody alive in 1999 was there at its start
 _AGES = np.arange(0.0, 120.0)
 REVISED = 2021
-_CLOSING, _HEAT, _INFANTS = 2009, 2018, 2006
+JOINED = 2005  # Tollbay was two districts up to the year before
+CENSUS, REBASED = 2021, 2012  # its estimate of the population goes back to the second year
+HEAT = 2018
+_CLOSING, _INFANTS = 2009, 2006
 
 
 @dataclass(frozen=True, slots=True)
@@ -48,6 +51,8 @@ REGIONS = (
     Region("elderwick", "Elderwick", 410_000, -0.006, later=0.7, heat=0.2),
     Region("little-auk", "Little Auk", 14_500, -0.001, later=0.2, open_age=90),
 )
+TOWN = Region("tollbay-town", "Tollbay Town", 290_000, 0.0)
+SHORE = Region("tollbay-shore", "Tollbay Shore", 180_000, 0.0)
 WHOLE = Region("quillmere", "Quillmere", sum(region.people for region in REGIONS), 0.0)
 
 
@@ -71,7 +76,7 @@ def death_rates(region: Region, year: int) -> Array:
         rise = 0.62 * min(1.0, (year - _CLOSING + 1) / 8)
         working = np.clip((ages - 27) / 5, 0, 1) * np.clip((62 - ages) / 5, 0, 1)
         rates[1] *= 1 + rise * working
-    if year == _HEAT:
+    if year == HEAT:
         rates *= 1 + region.heat * np.clip((ages - 73) / 4, 0, 1)
     return rates
 
@@ -168,7 +173,8 @@ def _with_whole(regions: list[Counts]) -> dict[str, Counts]:
 
 
 def counted(*, revised: bool) -> dict[str, Counts]:
-    """Counts by area code: as first reported, or with the revision of 2021 in Northlade."""
+    """Counts by area code: as first reported, or with the revision of 2021 in Northlade; those of
+    the two districts beside Tollbay."""
     happened = [_drawn(region, order) for order, region in enumerate(REGIONS)]
     known = [
         _first_reported(region, counts, order)
@@ -177,4 +183,41 @@ def counted(*, revised: bool) -> dict[str, Counts]:
     if revised:
         at = YEARS.index(REVISED)
         known[0].deaths[at] = happened[0].deaths[at]
-    return _with_whole(known)
+    together = _with_whole(known)
+    return together | districts(together["tollbay"])
+
+
+def districts(tollbay: Counts) -> dict[str, Counts]:
+    """The counts of Tollbay as its two districts kept them: together they are what Tollbay has."""
+    share = TOWN.people / (TOWN.people + SHORE.people)
+    chance = np.random.default_rng([SEED, 80])
+    town = Counts(
+        chance.binomial(tollbay.deaths, share),
+        np.rint(share * tollbay.population).astype(np.int64),
+        np.rint(share * tollbay.births).astype(np.int64),
+        chance.binomial(tollbay.stillbirths, share),
+        chance.binomial(tollbay.neonatal_deaths, share),
+    )
+    least = np.maximum(0, tollbay.neonatal_deaths - (tollbay.deaths - town.deaths)[..., 0])
+    early = np.clip(town.neonatal_deaths, least, town.deaths[..., 0])
+    town = replace(town, neonatal_deaths=early)
+    rest = {
+        one.name: getattr(tollbay, one.name) - getattr(town, one.name) for one in fields(Counts)
+    }
+    return {TOWN.code: town, SHORE.code: Counts(**rest)}
+
+
+def recounted(known: dict[str, Counts]) -> dict[str, Counts]:
+    """With the population that the census found: fewer young adults, who had left without a word,
+    and fewer of the oldest, of whom some had died abroad; more so the nearer to the census."""
+    starts, years = np.array(STARTS), np.array(YEARS)
+    away = np.where((starts >= 20) & (starts < 40), 0.035, 0.0) + np.where(starts >= 80, 0.05, 0.0)
+    reach = np.clip((years - 2002) / (CENSUS - 2002), 0, 1) * (years >= REBASED)
+    left = 1 - reach[:, None, None] * away
+    regions = [known[region.code] for region in REGIONS]
+    return _with_whole(
+        [
+            replace(counts, population=np.rint(counts.population * left).astype(np.int64))
+            for counts in regions
+        ]
+    )

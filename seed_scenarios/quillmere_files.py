@@ -5,7 +5,20 @@ from itertools import pairwise
 import numpy as np
 from numpy.typing import NDArray
 
-from seed_scenarios.quillmere_counts import REGIONS, SEXES, STARTS, WHOLE, YEARS, Counts, Region
+from seed_scenarios.quillmere_counts import (
+    HEAT,
+    JOINED,
+    REBASED,
+    REGIONS,
+    SEXES,
+    SHORE,
+    STARTS,
+    TOWN,
+    WHOLE,
+    YEARS,
+    Counts,
+    Region,
+)
 
 _WORDS = {"f": "women", "m": "men"}
 _PROVISIONAL = YEARS[-1]
@@ -49,15 +62,40 @@ def births_csv(counted: dict[str, Counts], years: tuple[int, ...], areas: tuple[
     return _text(lines)
 
 
+def areas_csv() -> bytes:
+    """What became of the codes of Tollbay's two districts."""
+    before = JOINED - 1
+    return _text(
+        [
+            "code,becomes,from,to,name",
+            f"{TOWN.code},tollbay,,{before},Tollbay",
+            f"{SHORE.code},tollbay,,{before},",
+        ]
+    )
+
+
+def breaks_csv() -> bytes:
+    """The new population base, and the year of the hot summer."""
+    return _text(
+        [
+            "area,year,kind,note",
+            f",{REBASED},population,after the census of 2021",
+            f",{HEAT},shock,hot summer",
+        ]
+    )
+
+
 def _cells(
     years: tuple[int, ...], areas: tuple[str, ...]
 ) -> list[tuple[Region, int, str, tuple[int, int]]]:
-    """Every area, year and sex asked for, with its place in the arrays."""
+    """Every area, year and sex asked for, with its place in the arrays; Tollbay by its districts
+    where there were two."""
     return [
-        (region, year, sex, (YEARS.index(year), row))
+        (part, year, sex, (YEARS.index(year), row))
         for region in (*REGIONS, WHOLE)
         if region.code in areas
         for year in years
+        for part in ((TOWN, SHORE) if region.code == "tollbay" and year < JOINED else (region,))
         for row, sex in enumerate(SEXES)
     ]
 

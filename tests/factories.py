@@ -128,6 +128,7 @@ def edition(
     parents: Mapping[str, str] | None = None,
     delivered: Collection[str] = (),
     provisional: Collection[str] = (),
+    breaks: tuple[records.Break, ...] = (),
     note: str = "",
 ) -> Edition:
     """A further edition of a collection, made anew where there is none. `panels` are named by their
@@ -156,7 +157,9 @@ def edition(
     )
     held = schedules.load(session, code, base) if base else {}
     summed = totals.totalled(cells, listed, base=held, base_areas=stood)
-    change = Change(code, base, summed.cells, listed, BASIS, ended=summed.ended)
+    change = Change(
+        code, base, summed.cells, listed, BASIS, ended=summed.ended, breaks=breaks
+    )
     prepared = editions.prepare(session, change)
     with transaction(session):
         return editions.write(session, prepared, by="the desk", note=note, at=NOON)

@@ -23,4 +23,4 @@ def _field(role: str, field: str, at: int) -> Field:
     hint = say.hint(field) if at == 1 and field in HEADINGS[role] else ""
     if field == "kind":
         return select(name, label, say.kinds(BREAKS, NONE), "", hint=hint)
-    return text(name, label, "", hint=hint, width="wide" if field == "note" else "")
+    return text(name, label, "", hint=hint, width="wide" if field in ("share", "name") else "")

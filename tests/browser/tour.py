@@ -35,6 +35,10 @@ READ = {
     "trend-undefined": "/c/quillmere/2/trend"
     f"?of=H&area=quillmere&area=stonereach&sex=f&from=1999&to=2023{_CHOICES}",
     "quality": "/c/quillmere/2/quality?figures=released&settings=almanac-1",
+    "trend-broken": "/c/quillmere/3/trend"
+    f"?of=e0&area=quillmere&sex=f&sex=m&from=1999&to=2023{_CHOICES}",
+    "comparison-broken": "/c/quillmere/3/comparison"
+    f"?this=quillmere.f.2020&that=quillmere.f.2005&of=e0{_CHOICES}",
     "methods": "/methods",
     "checks": "/checks",
     "words": "/words",

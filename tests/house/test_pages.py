@@ -27,6 +27,7 @@ pytestmark = pytest.mark.house
 NOW = dt.datetime(2026, 12, 1, 9, tzinfo=dt.UTC)
 STARTS = ("/", "/collections", "/methods", "/words", "/uploads", "/nothing-here")
 FAULTY = "YEAR,SEX,AGE,DEATHS\n2001,f,0,-3\n2001,x,1+,2\n2001,m,0-4,\n2001,m,5+,many\n"
+NOTES_OF_BREAKS = ("after the census of 2021", "hot summer")
 NAMES = {"Ebbline", "csv", "xlsx", "json", "CSV", "XLSX", "JSON", "SHA", "UTC", "ISO"}
 SYMBOLS = {"edagger", "median", "mode", "almanac", "ageing_rate"}  # keys, as in addresses
 
@@ -89,6 +90,7 @@ def known_words() -> set[str]:
     """Words that are data: names, codes and notes of the collection, and of files."""
     said = [quillmere.OFFICE.name, LOCAL.name, quillmere.NAME, quillmere.CODE, FAULTY]
     said += [quillmere.BASIS.source, quillmere.BASIS.population_date, *quillmere.NOTES]
+    said += [quillmere.BASIS.vintage, quillmere.VINTAGE, *NOTES_OF_BREAKS]
     said += [text for region in (*REGIONS, WHOLE) for text in (region.code, region.name)]
     return set(re.findall(r"[^\W\d_]{2,}", " ".join(said))) | NAMES | SYMBOLS
 

@@ -2,23 +2,31 @@
 
 import csv
 import io
+from dataclasses import fields
 
 import numpy as np
 import pytest
 
 from seed_scenarios.quillmere_counts import (
+    JOINED,
+    REBASED,
     REGIONS,
     REVISED,
+    SHORE,
     STARTS,
+    TOWN,
     WHOLE,
     YEARS,
     Counts,
     counted,
     death_rates,
+    districts,
+    recounted,
 )
 from seed_scenarios.quillmere_files import births_csv, deaths_csv, population_csv
 
 AREAS = (*(region.code for region in REGIONS), WHOLE.code)
+PARTS = (*REGIONS, TOWN, SHORE)
 REGION = {region.code: region for region in REGIONS}
 
 
@@ -53,12 +61,13 @@ def test_a_region_closes_its_ages_where_it_says(first: dict[str, Counts]) -> Non
     table = rows(deaths_csv(first, YEARS, AREAS))
     ends = {row["area"]: row["age"] for row in table if row["age"].endswith("+")}
     assert ends == {
-        **dict.fromkeys(AREAS, "100+"),
+        **dict.fromkeys((*AREAS, TOWN.code, SHORE.code), "100+"),
         "stonereach": "85+",
         "little-auk": "90+",
     }
     for code in AREAS:
-        written = sum(int(row["deaths"]) for row in table if row["area"] == code)
+        codes = {code, TOWN.code, SHORE.code} if code == "tollbay" else {code}
+        written = sum(int(row["deaths"]) for row in table if row["area"] in codes)
         assert written == first[code].deaths.sum(), code
 
 
@@ -105,3 +114,32 @@ def test_the_planted_causes_are_in_the_rates() -> None:
     assert np.all(hot[:, 40:70] < 1)
     infants = [death_rates(REGION["harrowfen"], year)[0, 0] for year in (2005, 2013)]
     assert infants[1] < 0.5 * infants[0]
+
+
+def test_the_districts_of_tollbay_are_tollbay(first: dict[str, Counts]) -> None:
+    parts = districts(first["tollbay"])
+    for one in fields(Counts):
+        numbers = [getattr(parts[code.code], one.name) for code in (TOWN, SHORE)]
+        assert np.array_equal(numbers[0] + numbers[1], getattr(first["tollbay"], one.name))
+        assert all(np.all(counts >= 0) for counts in numbers)
+    for counts in parts.values():
+        assert np.all(counts.neonatal_deaths <= counts.deaths[..., 0])
+    table = rows(deaths_csv(first, YEARS, AREAS))
+    years = {code.code: {int(r["year"]) for r in table if r["area"] == code.code} for code in PARTS}
+    assert years[TOWN.code] == years[SHORE.code] == set(range(1999, JOINED))
+    assert years["tollbay"] == set(range(JOINED, 2024))
+
+
+def test_the_census_finds_fewer_young_adults_and_fewer_of_the_oldest(
+    revised: dict[str, Counts],
+) -> None:
+    after = recounted(revised)
+    since = YEARS.index(REBASED)
+    starts = np.array(STARTS)
+    away = ((starts >= 20) & (starts < 40)) | (starts >= 80)
+    for code in AREAS:
+        before, now = revised[code].population, after[code].population
+        assert np.array_equal(before[:since], now[:since])
+        assert np.array_equal(before[since:, :, ~away], now[since:, :, ~away])
+        assert now[since:, :, away].sum() < 0.99 * before[since:, :, away].sum()
+        assert np.array_equal(revised[code].deaths, after[code].deaths)

@@ -18,7 +18,7 @@ def built(tmp_path_factory: pytest.TempPathFactory) -> Path:
     folder = tmp_path_factory.mktemp("quillmere")
     migrate(Config(data=folder).url)
     with writing(folder) as session:
-        quillmere.build(session, now=NOW)
+        quillmere.deliver(session, now=NOW)
     return folder
 
 

@@ -188,7 +188,7 @@ def revise(session: Session) -> int:
     map_upload(
         session,
         upload_id=upload.id,
-        mappings=quillmere.MAPPINGS,
+        mappings={role: quillmere.MAPPINGS[role] for role in made},
         basis=quillmere.BASIS,
         by=LOCAL,
         now=NOW,

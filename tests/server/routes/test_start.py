@@ -39,7 +39,8 @@ def test_another_template_is_refused_with_those_there_are(blank: TestClient) -> 
     answer = blank.get("/templates/causes.csv")
     assert answer.status_code == 404
     assert answer.json()["detail"] == (
-        "There is no template causes.csv; there are deaths.csv, population.csv, births.csv."
+        "There is no template causes.csv; there are deaths.csv, population.csv, births.csv, "
+        "areas.csv, breaks.csv."
     )
 
 
@@ -54,12 +55,12 @@ def test_one_button_loads_the_demonstration_once(blank: TestClient) -> None:
         answer = blank.post("/demonstration")
         assert (answer.status_code, answer.headers["location"]) == (303, "/c/quillmere")
     pinned = blank.get("/c/quillmere").headers["location"]
-    assert pinned == "/c/quillmere/2/contents?figures=released&settings=almanac-1"
-    assert "All deaths, Quillmere, edition 2: 25 years, 1999 to 2023, 7 areas." in (
+    assert pinned == "/c/quillmere/3/contents?figures=released&settings=almanac-1"
+    assert "All deaths, Quillmere, edition 3: 25 years, 1999 to 2023, 7 areas." in (
         blank.get(pinned).text
     )
     listed = blank.get(f"/c/{quillmere.CODE}/editions.json").json()["figures"]["editions"]["rows"]
-    assert [row["edition"] for row in listed] == [2, 1]
+    assert [row["edition"] for row in listed] == [3, 2, 1]
 
 
 def test_another_site_cannot_press_the_button(blank: TestClient) -> None:
