@@ -111,12 +111,6 @@ def _quality(heading: Heading, question: ContentsQuestion) -> str:
     return address(heading.collection.code, heading.edition.number, asked)
 
 
-def _tables(found: Contents) -> tuple[Table, ...]:
-    newest = [contents_tables.areas(found, found.newest)] if found.newest else []
-    held = found.holdings
-    return (*newest, *([breaks.table(held.breaks, held.name)] if held.breaks else []))
-
-
 def _editions(
     session: Session, heading: Heading, erased: dict[int, tuple[UploadFile, ...]]
 ) -> contents_tables.Listing:
