@@ -89,8 +89,11 @@ class _Way:
             for step in path:
                 self._join(step)
             if not path:
-                path = self._thin(tail, head, slot, asked)
-                (done.narrow if path else done.exposed).append(slot)
+                path = self._path(tail, head, self._edges(thick | self._wholes(slot)))
+            if not path:
+                path, wide = self._thin(tail, head, slot, asked)
+                if not (path and wide):
+                    (done.narrow if path else done.exposed).append(slot)
             for step in path:
                 self._hide(step)
                 edges.length[edges.of == step] = _FREE
@@ -98,15 +101,27 @@ class _Way:
     def _hide(self, slot: int) -> None:
         self.hidden[slot] |= self.net.members[slot]
 
-    def _thin(self, tail: int, head: int, slot: int, asked: float) -> list[int]:
-        """The thickest path there is; empty where the equations leave none."""
+    def _wholes(self, slot: int) -> Bools:
+        """The same age in the areas this one is part of: a count there moves with the one here, of
+        which it has at least as many to give up."""
+        found = np.zeros(len(self.usable), bool)
+        node = int(self.net.head[slot])
+        while node > 0:
+            above = np.flatnonzero(self.net.tail == node)
+            found[above] = True
+            node = int(self.net.head[above[0]]) if len(above) else 0
+        return found & self.usable
+
+    def _thin(self, tail: int, head: int, slot: int, asked: float) -> tuple[list[int], bool]:
+        """The thickest path there is, empty where the equations leave none; and whether it is wide
+        enough all the same, for those who cannot know that none of its counts is 0."""
         others = self.usable.copy()
         others[slot] = False
         for least in (*np.arange(asked - 1, 0, -1.0).tolist(), 0.0):
             edges = self._edges(others & (self.capacity >= least))
             if path := self._path(tail, head, edges):
-                return path
-        return []
+                return path, least >= asked - 1
+        return [], False
 
     def _root(self, node: int) -> int:
         while self.joined[node] != node:
