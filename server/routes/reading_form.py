@@ -27,7 +27,7 @@ _MOST_ROWS = 9  # of headings
 def answers(form: Form, roles: Iterable[str]) -> Answers:
     """All that was sent; errors by the name of the field."""
     errors: dict[str, str] = {}
-    files = {role: _said(form, role, errors) for role in roles if f"{role}.shown" in form}
+    files = {role: _said(form, role, errors) for role in roles}
     shared = _shared(form, errors)
     basis = _basis(form, errors)
     return Answers(files=files, texts=form, shared=shared, basis=basis, errors=errors)
@@ -41,6 +41,7 @@ def roles_said(form: Form, roles: Iterable[str]) -> dict[str, str]:
 
 def _said(form: Form, role: str, errors: dict[str, str]) -> Said:
     shown = _shown(form.get(f"{role}.shown", ""))
+    known = shown or intake.Form()
     codes = (
         (form.get(f"{role}.sex_text.{place}", ""), form.get(f"{role}.sex.{place}", ""))
         for place in range(12)
@@ -53,11 +54,11 @@ def _said(form: Form, role: str, errors: dict[str, str]) -> Said:
     wide = form.get(f"{role}.wide", "")
     return Said(
         kind=form.get(f"{role}.role", ""),
-        form=_form(form, role, shown, errors),
+        form=_form(form, role, shown, errors) if shown else None,
         shown=shown,
-        marks=form.get(f"{role}.marks", "point") in ask.MARKS,
+        marks=form.get(f"{role}.marks", "") in ask.MARKS,
         columns={field: form.get(f"{role}.{field}", "") for field in intake.COLUMNS},
-        wide=() if wide == ask.LONG else tuple(wide.split("-")) if wide else shown.across,
+        wide=() if wide == ask.LONG else tuple(wide.split("-")) if wide else known.across,
         across_number=form.get(f"{role}.across_number", ""),
         units=tuple(units),
         rate_is=form.get(f"{role}.rate_is", ""),
@@ -65,12 +66,13 @@ def _said(form: Form, role: str, errors: dict[str, str]) -> Said:
     )
 
 
-def _shown(text: str) -> intake.Form:
-    """The form in which the file was shown; one that was tampered with is as good as none."""
+def _shown(text: str) -> intake.Form | None:
+    """The form in which the file was shown; None where it was not, or the text was tampered with:
+    then the answers are about what is likely."""
     try:
         return intake.Mapping.from_json(text).form
     except (ValueError, TypeError):
-        return intake.Form()
+        return None
 
 
 def _form(form: Form, role: str, shown: intake.Form, errors: dict[str, str]) -> intake.Form:

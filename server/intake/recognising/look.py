@@ -31,7 +31,7 @@ class Said:
     kind: str = ""  # what it holds; empty: not answered
     form: Form | None = None  # but for what stands across; None: nothing was said yet
     shown: Form | None = None  # the form in which the file was shown when this was said
-    marks: bool = True  # how numbers are written was answered
+    marks: bool = False  # how numbers are written was answered
     columns: Mapped[str, str] = field(default_factory=dict)  # by field
     wide: tuple[str, ...] | None = None  # fields that stand in headings
     across_number: str = ""
@@ -77,20 +77,25 @@ def look(
 ) -> Looked:
     """Read a file as was said, else as one of the earlier ones, newest first, whose columns it has,
     else as is likely. Never raises for its content."""
-    if said is None or said.form is None:
+    if said is None:
         return _first(content, name, role, before)
-    shown = said.shown or said.form
-    if any(getattr(said.form, part) != getattr(shown, part) for part in CUT):
-        stated = Form(**{part: getattr(said.form, part) for part in CUT})
+    if said.form is None:
+        likely = _first(content, name, role, before)
+        if likely.reading.problems or role in LISTS:
+            return likely
+        form = likely.mapping.form
+        return look(content, name, role, replace(said, form=form, shown=form, wide=None))
+    form, shown = said.form, said.shown or said.form
+    if any(getattr(form, part) != getattr(shown, part) for part in CUT):
+        stated = Form(**{part: getattr(form, part) for part in CUT})
         return replace(_recognised(proposed(content, name, stated), role), changed=True)
-    reading = read(content, name, said.form)
-    rows = (said.form.heading, said.form.heading_rows)
-    if rows != (shown.heading, shown.heading_rows):
+    reading = read(content, name, form)
+    if (form.heading, form.heading_rows) != (shown.heading, shown.heading_rows):
         return replace(_recognised(reading, role), changed=True)
     if role not in LISTS and said.wide is not None and said.wide != shown.across:
         return replace(_recognised(reading, role, said.wide), changed=True)
     if reading.sheets:  # which of its numbers are texts only a reading that proposes tells
-        asked = proposed(content, name, Form(sheet=said.form.sheet)).questions
+        asked = proposed(content, name, Form(sheet=form.sheet)).questions
         reading = replace(reading, questions=asked)
     return _looked(reading, role, _mapped(reading, role, said), said)
 
@@ -157,6 +162,7 @@ def said_in(mapping: Mapping, role: str) -> Said:
     return Said(
         kind=role,
         form=mapping.form,
+        marks=True,
         columns={of: mapping.column(of) for of in COLUMNS},
         wide=mapping.form.across,
         across_number=mapping.form.across_number,
@@ -168,7 +174,8 @@ def said_in(mapping: Mapping, role: str) -> Said:
 
 def _mapped(reading: Reading, role: str, said: Said) -> Mapping:
     """What was said, as a mapping."""
-    way = stands(reading, role, said.wide or ()) if role not in LISTS else Across((), ())
+    wide = (said.shown or reading.form).across if said.wide is None else said.wide
+    way = stands(reading, role, wide) if role not in LISTS else Across((), ())
     form = replace(
         reading.form,
         across=way.fields,
@@ -202,7 +209,7 @@ def _looked(reading: Reading, role: str, mapping: Mapping, said: Said | None) ->
     answered = dict(mapping.sex_codes)
     missing = {
         "kind": not (kind(reading).role or (said and said.kind)),
-        "marks": not (found.sure if said is None else said.marks),
+        "marks": not found.sure and not (said and said.marks),
         "number": bool(mapping.form.across) and "" in numbers,
         "units": bool(told - {number for number, _ in stated}),
         "rate_is": "rate" in numbers and not mapping.rate_is,
