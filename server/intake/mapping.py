@@ -2,6 +2,7 @@
 
 import json
 from dataclasses import asdict, dataclass, fields
+from itertools import repeat
 from typing import Any
 
 # fields of a mapping that name a column of the file
@@ -123,6 +124,14 @@ class Mapping:
         return str(getattr(self, field))
 
 
+def _texts(part: Any, name: str) -> str | tuple[str, ...]:
+    """A text of a list, or a list of texts in it. Raises: ValueError."""
+    inner = part if isinstance(part, list) else [part]
+    if not all(isinstance(text, str) for text in inner):
+        raise ValueError(f"mapping field {name} holds {part!r}; expected texts")
+    return tuple(inner) if isinstance(part, list) else part
+
+
 def _checked(cls: type[Form] | type[Mapping], stored: Any) -> dict[str, Any]:
     """Stored fields with lists made tuples. Raises: ValueError."""
     if not isinstance(stored, dict):
@@ -137,7 +146,7 @@ def _checked(cls: type[Form] | type[Mapping], stored: Any) -> dict[str, Any]:
         if isinstance(known[name], tuple):
             if not isinstance(value, list):
                 raise ValueError(f"mapping field {name} is {value!r}; expected a list")
-            found[name] = tuple(tuple(part) if isinstance(part, list) else part for part in value)
+            found[name] = tuple(map(_texts, value, repeat(name)))
         elif type(value) is not type(known[name]):
             raise ValueError(
                 f"mapping field {name} is {value!r}; expected {type(known[name]).__name__}"

@@ -96,4 +96,5 @@ def basis_population(population: str) -> str:
     return {
         "midyear": _("the population in the middle of the year stands for the person-years"),
         "person_years": _("person-years as delivered"),
+        "january": _("person-years are the mean of the populations of two 1 Januaries"),
     }[population]
