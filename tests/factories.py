@@ -11,7 +11,7 @@ from numpy.typing import ArrayLike, NDArray
 from engine.ages import AgeGrid, Array
 from engine.panel import Panel
 from server.accounts.viewer import LOCAL
-from server.actions import totals
+from server.actions import masking, totals
 from server.actions.check_upload import check_upload
 from server.actions.map_upload import map_upload
 from server.actions.receive_upload import receive_upload
@@ -157,12 +157,12 @@ def edition(
     )
     held = schedules.load(session, code, base) if base else {}
     summed = totals.totalled(cells, listed, base=held, base_areas=stood)
-    change = Change(
-        code, base, summed.cells, listed, BASIS, ended=summed.ended, breaks=breaks
-    )
-    prepared = editions.prepare(session, change)
+    change = Change(code, base, summed.cells, listed, BASIS, ended=summed.ended, breaks=breaks)
+    prepared, masked = editions.prepare(session, change), masking.mask_of(session, change)
     with transaction(session):
-        return editions.write(session, prepared, by="the desk", note=note, at=NOON)
+        made = editions.write(session, prepared, by="the desk", note=note, at=NOON)
+        masking.keep(session, change, made.number, masked, at=NOON)
+    return made
 
 
 # ---- store: schedules as they are ----------------------------------------------------------------

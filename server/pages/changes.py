@@ -127,7 +127,8 @@ def _lead(found: Changes) -> tuple[Sentence, ...]:
         status: {one.key.period for one in found.statuses if one.now and one.now.status == status}
         for status in ("final", "provisional")
     }
-    said = [say.lost(_(indicators.find(OF).label), lost)]
+    said = [say.rebase(found.rebased, found.heading.edition.basis.vintage)]
+    said += [say.lost(_(indicators.find(OF).label), lost)]
     said += [
         say.statuses(sorted(years), status, moved=moved)
         for status, all_ in turned.items()

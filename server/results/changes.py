@@ -178,6 +178,17 @@ class Changes:
         return tuple(one for one in self.altered if one.kind != "marks")
 
     @property
+    def rebased(self) -> tuple[str, ...]:
+        """The years whose population is another under the same deaths, where nothing but the
+        population changed: a rebase."""
+        numbers = self.numbers
+        if not numbers or any(one.key.measure != "person_years" for one in numbers):
+            return ()
+        if any(one.kind in ("added", "dropped") for one in numbers):
+            return ()
+        return tuple(sorted({one.key.period for one in numbers}))
+
+    @property
     def statuses(self) -> tuple[Altered, ...]:
         return tuple(one for one in self.altered if one.restated)
 

@@ -75,6 +75,22 @@ def unmoved(label: str) -> str:
     return _("no {label} moved", label=names.inside(label))
 
 
+def rebase(years: Sequence[str], vintage: str) -> Sentence:
+    """That nothing but the population is new; empty where more is, or nothing."""
+    if not years:
+        return ()
+    if not vintage:
+        return phrase(
+            _("A rebase: the population of {years} is new, and no death changed."),
+            years=_years(years),
+        )
+    return phrase(
+        _("A rebase: the population of {years} is new ({vintage}), and no death changed."),
+        years=_years(years),
+        vintage=vintage,
+    )
+
+
 def lost(label: str, count: int) -> Sentence:
     """Figures that one of the two editions cannot give; empty where there is none."""
     if not count:

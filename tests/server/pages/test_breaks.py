@@ -1,10 +1,13 @@
 """Breaks on pages: lines stop, sentences keep to one side, and a comparison across one says so."""
 
+from dataclasses import replace
+
 import pytest
 from sqlalchemy.orm import Session
 
-from server.pages import comparison, contents, population_year, trend
+from server.pages import changes, comparison, contents, population_year, trend
 from server.pages.page import Page
+from server.results.changes import ChangesQuestion
 from server.results.contents import ContentsQuestion
 from server.results.questions import (
     ComparisonQuestion,
@@ -154,3 +157,17 @@ def test_the_contents_of_an_edition_list_its_breaks(isle: Session) -> None:
     assert [page.broken for page in pages] == [False, True, True]
     assert len(pages[1].table("breaks").rows) == 4
     assert pages[2].table("breaks").rows == pages[1].table("breaks").rows
+
+
+@pytest.mark.parametrize(("times", "rebase"), [(1.0, True), (1.1, False)])
+def test_a_new_population_alone_is_named_a_rebase(
+    session: Session, times: float, rebase: bool
+) -> None:
+    first = gompertz_panel(people=2e5, seed=1)
+    edition(session, {"north.f.2014": first})
+    recounted = replace(first, exposure=0.97 * first.exposure, deaths=times * first.deaths)
+    edition(session, {"north.f.2014": recounted})
+    built = changes.build(session, heading(session, "isle", 2), ChangesQuestion(since=1))
+    said = [plain(sentence) for sentence in built.lead]
+    told = "A rebase: the population of 2014 is new, and no death changed."
+    assert (told in said) is rebase
