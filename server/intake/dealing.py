@@ -52,43 +52,55 @@ def dealt(amounts: Ints, bins: Ints, weights: Ints) -> Ints:
 
 @dataclass(frozen=True, slots=True)
 class Pool:
-    """Counts of one measure, cell by cell in the order of area, sex, year and age: [cell]."""
+    """Counts of one measure in the order of area, sex and year: lines, and their cells by age."""
 
-    blocks: tuple[Block, ...]  # whose cells they are
-    order: Ints  # where each stands when the blocks are laid one after another
-    place: Ints
-    start: Ints
-    line: Ints  # cells of one place share it
-    adult: Flags  # no infants, or these with older ones
-    units: Ints
+    blocks: tuple[Block, ...]  # whose lines they are
+    place: Ints  # [line]
+    block: Ints  # [line], which of the blocks
+    begins: Ints  # [line + 1], where its cells begin
+    order: Ints  # [cell], where each stands when the blocks are laid one after another
+    start: Ints  # [cell], age
+    units: Ints  # [cell], millionths
 
     @classmethod
     def of(cls, blocks: Sequence[Block]) -> "Pool":
         kept = tuple(block for block in blocks if len(block.place))
         none = [np.zeros(0, np.int64)]
-        place = np.concatenate(none + [np.repeat(b.place, len(b.grid)) for b in kept])
+        place = np.concatenate(none + [block.place for block in kept])
+        lines = [len(block.place) for block in kept]
+        which = np.repeat(np.arange(len(kept)), lines)
+        sizes = np.array([len(block.grid) for block in kept], np.int64)[which]
+        order = np.argsort(place, kind="stable")
+        first = np.append(0, np.cumsum(sizes))[:-1][order]
+        begins = np.append(0, np.cumsum(sizes[order]))
+        cells = _ranges(first, sizes[order])
         start = np.concatenate(none + [np.tile(b.grid.starts, len(b.place)) for b in kept])
-        infants = np.concatenate(none + [np.full(b.values.size, b.grid.has(1)) for b in kept])
-        units = np.concatenate(none + [in_units(b.values).ravel() for b in kept])
-        order = np.lexsort((start, place))
-        place, start = place[order], start[order]
-        begins = np.append(True, place[1:] != place[:-1])[: len(place)]
-        adult = (start > 0) | (infants[order] == 0)
-        return cls(kept, order, place, start, np.cumsum(begins) - 1, adult, units[order])
+        units = np.concatenate(none + [in_units(block.values).ravel() for block in kept])
+        return cls(kept, place[order], which[order], begins, cells, start[cells], units[cells])
 
     def with_units(self, units: Ints) -> "Pool":
         return replace(self, units=units)
 
-    def at_all_ages(self) -> Ints:
-        """What the cells of each cell's line have together, [cell]."""
-        sums = np.zeros(len(self.units), np.int64)
-        np.add.at(sums, self.line, self.units)
-        return sums[self.line]
+    def cells(self, lines: Ints) -> tuple[Ints, Ints]:
+        """The cells of some lines, and which of these lines each is of."""
+        sizes = np.diff(self.begins)[lines]
+        return _ranges(self.begins[lines], sizes), np.repeat(np.arange(len(lines)), sizes)
 
-    def grid(self, cells: Flags) -> AgeGrid:
-        """The finest groups that the lines of these cells have in common."""
-        laid = zip(self.blocks, self.laid_out(cells), strict=True)
-        return reduce(AgeGrid.common, (block.grid for block, here in laid if here.any()))
+    def sums(self, units: Ints) -> Ints:
+        """Of the cells of each line, [line]."""
+        reach = np.append(0, np.cumsum(units))
+        sums: Ints = reach[self.begins[1:]] - reach[self.begins[:-1]]
+        return sums
+
+    def grid(self, lines: Ints) -> AgeGrid:
+        """The finest groups that some lines have in common."""
+        found = np.unique(self.block[lines]).tolist()
+        return reduce(AgeGrid.common, (self.blocks[block].grid for block in found))
+
+    def infants(self, lines: Ints) -> Flags:
+        """Whether they are a group of their own, [line]."""
+        own = np.array([block.grid.has(1) for block in self.blocks], bool)
+        return own[self.block[lines]]
 
     def laid_out(self, cells: NDArray[Kind]) -> list[NDArray[Kind]]:
         """Numbers of the cells in the form of the blocks, [line, age] each."""
@@ -99,3 +111,9 @@ class Pool:
             flat[first:last].reshape(block.values.shape)
             for block, first, last in zip(self.blocks, ends[:-1], ends[1:], strict=True)
         ]
+
+
+def _ranges(first: Ints, sizes: Ints) -> Ints:
+    """Numbers from each first one on, so many each, one range after another."""
+    before = np.cumsum(sizes) - sizes
+    return np.repeat(first - before, sizes) + np.arange(int(sizes.sum()))

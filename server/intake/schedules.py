@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from engine.ages import AgeGrid, Array
-from server.intake.cells import Cells, Flags, Ints
+from server.intake.cells import Cells, Flags, Ints, place_of
 from server.intake.mapping import NUMBERS
 from server.intake.mapping import Mapping as FileMapping
 from server.intake.problems import Fault, Value
@@ -226,9 +226,7 @@ def groups(rows: Ordered, spoiled: Ints) -> Iterator[Aside]:
     last = np.where(rows.open[kept], OLDEST, np.maximum(rows.end[kept], rows.start[kept]))
     ages = rows.start[kept] * (OLDEST + 1) + last
     for one in np.unique(ages).tolist():
-        here = np.zeros(len(rows.cells.sheet), bool)
-        here[take[ages == one]] = True
-        yield from asides(rows.cells, here, divmod(one, OLDEST + 1))
+        yield from asides(rows.cells, take[ages == one], divmod(one, OLDEST + 1))
 
 
 def _rounded(values: Array, field: str) -> Array:
@@ -236,13 +234,13 @@ def _rounded(values: Array, field: str) -> Array:
 
 
 def asides(
-    cells: Cells, rows: Flags, ages: tuple[int, int] | None = (0, OLDEST)
+    cells: Cells, rows: Flags | Ints, ages: tuple[int, int] | None = (0, OLDEST)
 ) -> Iterator[Aside]:
     """The numbers of some rows, in the order of their places, and which ages they are of."""
-    take = np.flatnonzero(rows)
+    take = np.flatnonzero(rows) if rows.dtype == bool else np.asarray(rows, np.int64)
     if not len(take):
         return
-    sheet, place = cells.sheet, cells.place[take]
+    sheet, place = cells.sheet, place_of(cells.area[take], cells.sex[take], cells.year[take])
     order = np.argsort(place, kind="stable")
     take, place = take[order], place[order]
     for field, numbers in sheet.numbers.items():

@@ -116,25 +116,29 @@ def unstated(ledger: Ledger, measure: str, pool: Pool) -> list[Part]:
     bare = [one.pick(~ledger.states(one.place) & ~np.isin(one.place, told)) for one in totals]
     found = [*grouped, *(one.once() for one in ageless), *bare]
     known = np.unique(np.concatenate([told, *(one.place for one in bare)]))
-    return [part for source in found for part in _parts(ledger, source, known, pool)]
+    _, sexes, years = parts_of(pool.place)
+    by_persons = np.unique(years[sexes == PERSONS])
+    return [part for one in found for part in _parts(ledger, one, known, by_persons)]
 
 
-def _parts(ledger: Ledger, source: Aside, known: Ints, pool: Pool) -> Iterator[Part]:
-    """The lines of a source, those together that lack the same."""
+def _parts(ledger: Ledger, source: Aside, known: Ints, by_persons: Ints) -> Iterator[Part]:
+    """The lines of a source, those together that lack the same; in years `by_persons` areas come
+    with persons."""
     area, sex, year = parts_of(source.place)
     nowhere, sexless = area == len(ledger.codes), sex == SEX_UNSTATED
-    _, sexes, years = parts_of(pool.place)
     persons = nowhere & (sex == PERSONS)
-    some = (source.values > 0) & ~(persons & _both_at(source.place, known))
-    split = persons & ~np.isin(year, years[sexes == PERSONS])  # where areas come by sex
+    split, some = sexless, source.values > 0
+    if persons.any():
+        some = some & ~(persons & _both_at(source.place, known))
+        split = sexless | (persons & ~np.isin(year, by_persons))
     for no_area in (False, True):
         for no_sex in (False, True):
             for by_sex in (False, True):
-                which = (nowhere == no_area) & (sexless == no_sex) & ((split | sexless) == by_sex)
+                which = some & (nowhere == no_area) & (sexless == no_sex) & (split == by_sex)
                 missing = {"sex": no_sex, "age": source.ages is None, "area": no_area}
                 named = tuple(matter for matter in MATTERS if missing[matter])
-                if named and (which & some).any():
-                    yield Part(source.pick(which & some), named, by_sex)
+                if named and which.any():
+                    yield Part(source.pick(which), named, by_sex)
 
 
 def _both_at(persons: Ints, known: Ints) -> Flags:
@@ -154,51 +158,60 @@ class _Made:
 def _shared_out(ledger: Ledger, pool: Pool, parts: list[Part]) -> _Made:
     lost, unsure = [], np.zeros(len(pool.units), bool)
     for step in MATTERS:
-        given = np.zeros_like(pool.units)
+        units = pool.units.copy()
         for part in parts:
             if part.step == step and part.spread:
-                line = _line_of(ledger, pool, part)
-                cells, left = _given(pool, part, line)
-                given += cells
-                unsure |= (cells > 0) & part.source.provisional[line]
-                if left.any():
-                    lost.append(part.pick(left > 0))
-        pool = pool.with_units(pool.units + given)
+                given = _given(ledger, pool, part)
+                units[given.cells] += given.units
+                unsure[given.cells] |= (given.units > 0) & part.source.provisional[given.line]
+                if given.left.any():
+                    lost.append(part.pick(given.left > 0))
+        pool = pool.with_units(units)
     return _Made(pool.units, unsure, lost)
 
 
-def _given(pool: Pool, part: Part, line: Ints) -> tuple[Ints, Ints]:
-    """What each cell of the pool gets of a part, [cell], and what is left of it, [line]."""
-    given, left = np.zeros_like(pool.units), part.units
-    for may, weights in _weights(pool, part, line >= 0):
-        cells = np.flatnonzero(may)
-        got = dealt(left, line[cells], weights[cells])
-        given[cells] += got
+@dataclass(frozen=True, slots=True)
+class _Given:
+    cells: Ints  # of the pool, each once
+    line: Ints  # of the part, that gives to each
+    units: Ints  # what each gets
+    left: Ints  # [line of the part], what none gets
+
+
+def _given(ledger: Ledger, pool: Pool, part: Part) -> _Given:
+    to, line = _lines_of(ledger, pool, part)
+    cells, which = pool.cells(to)
+    left, units = part.units, np.zeros(len(cells), np.int64)
+    for weights in _weights(pool, part, to, cells, which):
+        got = dealt(left, line[which], weights)
         taken = np.zeros_like(left)
-        np.add.at(taken, line[cells], got)
-        left = left - taken
-    return given, left
+        np.add.at(taken, line[which], got)
+        left, units = left - taken, units + got
+        if not left.any():
+            break
+    return _Given(cells, line[which], units, left)
 
 
-def _weights(pool: Pool, part: Part, here: Flags) -> Iterator[tuple[Flags, Ints]]:
-    """Which cells share and by what, and which and by what where those before have none of it."""
-    if not here.any():
+def _weights(pool: Pool, part: Part, to: Ints, cells: Ints, which: Ints) -> Iterator[Ints]:
+    """By what cells of some lines share, and by what where those before have none of it."""
+    if not len(to):
         return
+    own, start = pool.units[cells], pool.start[cells]
     if part.source.ages is None:
-        yield here & pool.adult, pool.units
-        yield here, pool.units
+        yield np.where((start == 0) & pool.infants(to)[which], 0, own)
+        yield own
         return
-    starts = np.array([*pool.grid(here).starts, OLDEST + 1])
-    first, last = part.source.ages  # as wide as the groups that all cells can be summed to
+    starts = np.array([*pool.grid(to).starts, OLDEST + 1])
+    first, last = part.source.ages  # as wide as the groups that all lines can be summed to
     low = starts[np.searchsorted(starts, first, side="right") - 1]
     high = starts[np.searchsorted(starts, min(last, OLDEST), side="right")]
-    ages = here & (pool.start >= low) & (pool.start < high)
-    yield ages, pool.units
-    yield ages, pool.at_all_ages()
+    ages = (start >= low) & (start < high)
+    yield np.where(ages, own, 0)
+    yield np.where(ages, pool.sums(pool.units)[to][which], 0)
 
 
-def _line_of(ledger: Ledger, pool: Pool, part: Part) -> Ints:
-    """Which line of a part may give to each cell, -1 where none may."""
+def _lines_of(ledger: Ledger, pool: Pool, part: Part) -> tuple[Ints, Ints]:
+    """Lines of the pool that may get some of a part, and the line of it that gives to each."""
     no_area, no_sex = "area" in part.lacks, part.by_sex
 
     def key(place: Ints) -> Ints:
@@ -214,7 +227,8 @@ def _line_of(ledger: Ledger, pool: Pool, part: Part) -> Ints:
     wanted, order = key(pool.place), np.argsort(key(part.place), kind="stable")
     keys = key(part.place)[order]
     at = np.minimum(np.searchsorted(keys, wanted), len(keys) - 1)
-    return np.where(may & (keys[at] == wanted), order[at], -1)
+    to = np.flatnonzero(may & (keys[at] == wanted))
+    return to, order[at[to]]
 
 
 def _written(pool: Pool, made: _Made) -> Iterator[Block]:
@@ -242,7 +256,10 @@ def _account(
         np.add.at(sums, which, units[kept])
         return dict(zip(years.tolist(), sums.tolist(), strict=True))
 
-    stated, after = by_year(pool.place, pool.units), by_year(pool.place, made.units)
+    if not parts:
+        return []
+    stated = by_year(pool.place, pool.sums(pool.units))
+    after = by_year(pool.place, pool.sums(made.units))
     found: dict[int, Counter[str]] = defaultdict(Counter)
     for part in parts:
         for year, units in by_year(part.place, part.units).items():

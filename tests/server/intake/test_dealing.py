@@ -56,19 +56,24 @@ def test_cells_stand_in_the_order_of_their_places_whatever_the_blocks() -> None:
     one = block(FINE, [place_of(1, 0, 2001)], [[1, 2, 3, 4]])
     two = block(COARSE, [place_of(0, 1, 2001), place_of(2, 0, 2001)], [[5, 6, 7], [8, 9, 10]])
     pool = Pool.of([one, two])
+    assert pool.place.tolist() == sorted([*one.place, *two.place])
     assert (pool.units / UNIT).tolist() == [5, 6, 7, 1, 2, 3, 4, 8, 9, 10]
     assert pool.start.tolist() == [0, 5, 10, 0, 1, 5, 10, 0, 5, 10]
-    assert pool.adult.tolist() == [True] * 3 + [False] + [True] * 6
-    assert (pool.at_all_ages() / UNIT).tolist() == [18] * 3 + [10] * 4 + [27] * 3
+    assert (pool.sums(pool.units) / UNIT).tolist() == [18, 10, 27]
+    lines = np.array([2, 1])
+    cells, which = pool.cells(lines)
+    assert (pool.units[cells] / UNIT).tolist() == [8, 9, 10, 1, 2, 3, 4]
+    assert which.tolist() == [0, 0, 0, 1, 1, 1, 1]
+    assert pool.infants(lines).tolist() == [False, True]
+    assert (pool.grid(lines[1:]), pool.grid(lines)) == (FINE, COARSE)
     back = pool.laid_out(pool.units)
     assert [(part / UNIT).tolist() for part in back] == [[[1, 2, 3, 4]], [[5, 6, 7], [8, 9, 10]]]
-    assert pool.grid(pool.place == one.place[0]) == FINE
-    assert pool.grid(np.ones(10, bool)) == COARSE
 
 
 def test_an_empty_pool_deals_nothing() -> None:
     pool = Pool.of([])
     assert pool.laid_out(pool.units) == []
+    assert not len(pool.cells(np.zeros(0, np.int64))[0])
     assert not len(dealt(np.zeros(0, np.int64), pool.place, pool.units))
 
 
