@@ -103,11 +103,12 @@ def _handed(
 ) -> Handed:
     """One file; `told`: what it holds was said, and need not be told by its columns."""
     looked = _likely(role, name, content, asked, before)
+    kept = looked.mapping
     if role not in LISTS and not looked.reading.problems:
         said = _said(looked, asked, told=told)
         looked = look(content, name, role, said)
         _require_answers(name, looked)
-    return Handed(role, name, content, _shared(looked.mapping, asked))
+    return Handed(role, name, content, _shared(looked.mapping, kept, asked))
 
 
 def _likely(
@@ -222,8 +223,8 @@ def _require_answers(name: str, looked: Looked) -> None:
         )
 
 
-def _shared(mapping: Mapping, asked: argparse.Namespace) -> Mapping:
-    """With what no column says, where it was said."""
+def _shared(mapping: Mapping, kept: Mapping, asked: argparse.Namespace) -> Mapping:
+    """With what no column says, where it was said, else as it was kept."""
     area, whole = asked.area or ("", ""), asked.whole or ("", "")
     wrong = [
         pair
@@ -239,7 +240,7 @@ def _shared(mapping: Mapping, asked: argparse.Namespace) -> Mapping:
                 what=what,
             )
         )
-    unstated = dict(mapping.unstated) | {field: WHAT[what] for field, what in asked.not_stated}
+    unstated = dict(kept.unstated) | {field: WHAT[what] for field, what in asked.not_stated}
     said = {
         "only_area": area[0],
         "only_area_name": area[1],
@@ -253,7 +254,8 @@ def _shared(mapping: Mapping, asked: argparse.Namespace) -> Mapping:
         "unstated": tuple(unstated.items()),
         "most_unstated": asked.share_at_most,
     }
-    return replace(mapping, **{field: value for field, value in said.items() if value})
+    known = {field: value or getattr(kept, field) for field, value in said.items()}
+    return replace(mapping, **known)
 
 
 def _of(said: Sequence[str], role: str) -> str:

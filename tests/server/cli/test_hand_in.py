@@ -106,6 +106,78 @@ def test_columns_can_be_named(ebbline: Ebbline, counts: Path) -> None:
     assert (plain.code, named.code) == (2, 0)
 
 
+UGLY = (
+    b"Table 4; deaths\n\nYear;Sex;Age;Deaths;Population\n"
+    + b"".join(
+        b"2014;%d;%s;%s;9.000\n" % (sex, age, deaths)
+        for sex in (1, 2)
+        for age, deaths in ((b"0", b"12"), (b"1-4", b"3"), (b"5+", b"1.204"))
+    )
+    + b"2014;1;Unknown;5;0\n"
+)
+SAID = (
+    *("--numbers", "comma-point", "--sex-code", "1=m", "--sex-code", "2=f"),
+    *("--not-stated", "age=share", "--area", "isle=Isle"),
+)
+
+
+def test_a_file_is_sorted_out_and_what_it_does_not_say_is_asked(
+    ebbline: Ebbline, tmp_path: Path
+) -> None:
+    path = tmp_path / "ugly.txt"
+    path.write_bytes(UGLY)
+    said = ebbline("hand-in", "--check-only", "--files", path)
+    assert said.code == 2
+    assert (
+        "ugly.txt does not say by itself: how numbers are written; which sex is meant" in said.err
+    )
+    assert "Say it with --numbers, --sex-code" in said.err
+    done = ebbline("hand-in", "--check-only", "--files", path, *SAID)
+    assert (done.code, "To be put right: 0" in done.out) == (0, True), done.out
+    left = ebbline("hand-in", "--check-only", "--files", path, *SAID[:-4], *SAID[-2:])
+    assert (left.code, "To be put right: 1" in left.out) == (2, True), left.out
+    assert (
+        "found 5 of unknown age" in left.out
+    )  # whether counts without an age are shared was not said
+
+
+def test_a_later_file_is_read_as_before(ebbline: Ebbline, tmp_path: Path) -> None:
+    path = tmp_path / "ugly.txt"
+    path.write_bytes(UGLY)
+    first = ebbline(
+        *("hand-in", "--collection", "salt", "--files", path, *SAID, "--note", "first", *NEW)
+    )
+    assert first.code == 0, first.err
+    path.write_bytes(UGLY.replace(b"2014;", b"2015;").replace(b"1.204", b"999"))
+    told = ("hand-in", "--collection", "salt", "--files", path, "--check-only")
+    assert ebbline(*told).code == 2
+    again = ebbline(*told, "--as-before", "--numbers", "comma-point")
+    assert (again.code, "To be put right: 0" in again.out) == (0, True), again.out + again.err
+
+
+@pytest.mark.parametrize(
+    ("option", "value", "sentence"),
+    [
+        ("--parted-by", "dots", "expected one of comma, semicolon"),
+        ("--headings", "first", "expected a row such as 3, or two such as 3-4"),
+        ("--headings", "4-3", "expected a row such as 3"),
+        ("--numbers", "counts=plain", "expected one of point, point-comma"),
+        ("--not-stated", "age=guess", "expected sex, age or area, and share or leave-out"),
+    ],
+)
+def test_answers_that_are_none_are_told(
+    ebbline: Ebbline, counts: Path, option: str, value: str, sentence: str
+) -> None:
+    said = ebbline("hand-in", "--check-only", "--counts", counts, option, value)
+    assert (said.code, sentence in said.err) == (2, True), said.err
+
+
+def test_the_form_may_be_said_of_one_kind_of_file_alone(ebbline: Ebbline, counts: Path) -> None:
+    told = ("hand-in", "--check-only", "--counts", counts, "--headings")
+    assert ebbline(*told, "deaths=2").code == 0  # of no file here
+    assert ebbline(*told, "counts=2").code == 2
+
+
 @pytest.mark.parametrize(
     ("words", "sentence"),
     [
@@ -157,7 +229,8 @@ def test_some_years_in_place_of_all_that_stood(ebbline: Ebbline, counts: Path) -
     told = ("hand-in", "--collection", "salt", "--counts", counts)
     assert "It holds 24 columns of ages." in ebbline(*told, *NEW).out
     counts.write_bytes(counts_csv(["north"], times=2))
-    said = ebbline(*told, "--take-years", "2002", "--gives-way", "years")
+    took = ("--take-years", "2002", "--gives-way", "years", "--note", "counted twice")
+    said = ebbline(*told, *took)
     assert said.code == 0, said.err
     assert "Of the columns of ages of edition 1: 3 changed and 6 dropped." in said.out
     listed = ebbline("editions", "--collection", "salt", "--as", "csv").out
