@@ -58,7 +58,8 @@ def _duplicate(rows: Ordered) -> Iterator[Marks]:
     if failing.any():
         places, which = np.unique(rows.place[failing], return_inverse=True)
         _, sexes, years = parts_of(places)
-        what = [f"{(*SEXES, NOT_STATED)[sex]} {year}" for sex, year in zip(sexes, years, strict=True)]
+        named = (*SEXES, NOT_STATED)
+        what = [f"{named[sex]} {year}" for sex, year in zip(sexes, years, strict=True)]
         yield Marks(
             _column(rows),
             failing,
