@@ -229,6 +229,15 @@ def _cautions(found: Comparison, moved_before: basis.Told) -> tuple[Caution, ...
             caution(found.this.loaded, found.that.loaded),
             basis.provisional(sorted(years)),
             moved_before,
+            basis.estimated(
+                list(
+                    dict.fromkeys(
+                        tables.named(found, side.of).whole
+                        for side in sides
+                        if side.loaded.estimated
+                    )
+                )
+            ),
             of_breaks.lies_between(
                 found.holdings.parted(*_outer(found), found.this.of.area, found.that.of.area),
                 *sorted((both.that.period, both.this.period)),

@@ -209,6 +209,9 @@ def _cautions(found: Findings, moved_before: basis.Told) -> tuple[Caution, ...]:
             caution(*_sides(found)),
             basis.provisional(_provisional(found)),
             moved_before,
+            basis.estimated(
+                [names.population(found.of.sex, found.name)] if found.loaded.estimated else []
+            ),
             breaks.mixed(
                 found.holdings.mixed(found.of, found.settings.years),
                 names.population(found.of.sex, found.name),

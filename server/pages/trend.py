@@ -213,6 +213,9 @@ def _cautions(found: Series, moved_before: basis.Told) -> tuple[Caution, ...]:
             withholding.behind(protected),
             basis.provisional(sorted(years)),
             moved_before,
+            basis.estimated(
+                [_who(found, line) for line, some in enumerate(found.estimated) if some]
+            ),
             basis.pooled(found.settings),
             basis.smoothed(found.settings),
             say.no_two(found.indicator),

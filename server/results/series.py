@@ -51,6 +51,7 @@ class Series:
     lines: tuple[tuple[str, str], ...]  # in the tree order of their areas
     periods: tuple[str, ...]
     estimate: Estimate
+    estimated: tuple[bool, ...]  # [line]: some year's counts were shared out or worked out
     protected: tuple[tuple[bool, ...], ...]  # [line][period]: counts behind it are withheld
     status: tuple[tuple[str, ...], ...]  # [line][period]: final, provisional; "" where not held
     open_ages: tuple[tuple[int | None, ...], ...]  # [line][period]: where the table ends
@@ -159,6 +160,10 @@ def series(
         lines=lines,
         periods=periods,
         estimate=estimate,
+        estimated=tuple(
+            any(one is not None and one.estimated for one in row)
+            for row in _rows(found, len(periods))
+        ),
         protected=_rows([one is not None and one.protected for one in found], len(periods)),
         status=_rows([one.status if one else "" for one in found], len(periods)),
         open_ages=_rows([one.panel.grid.open_age if one else None for one in found], len(periods)),

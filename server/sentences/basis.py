@@ -85,6 +85,18 @@ def few_deaths(deaths: float, who: str) -> Told:
     )
 
 
+def estimated(who: Sequence[str]) -> Told:
+    """That counts were not counted so, but shared out or worked out."""
+    if not who:
+        return None
+    return _("Estimated"), _(
+        "The counts of {who} are estimated: shared out from larger areas by stated shares, or"
+        " worked out from rates. Their intervals cover chance in the deaths as they were counted,"
+        " and no error of the shares.",
+        who=listed(who, most=8),
+    )
+
+
 def few_person_years(lived: float, settings: Settings, who: str = "") -> Told:
     """A flag, below the settings' bound, on figures that chance moves a good deal; `who` they are
     of, where a page has several."""
