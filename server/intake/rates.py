@@ -5,12 +5,12 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from engine.ages import AgeGrid, Array
 from engine.panel import SEXES
 from server.intake.cells import Flags, parts_of, sexes_of
 from server.intake.forms.found import Found
 from server.intake.labels import NOT_STATED
 from server.intake.ledger import Ledger
+from server.intake.probabilities import death_rates
 from server.intake.problems import Value
 from server.intake.schedules import DECIMALS, Aside, Block
 
@@ -23,21 +23,6 @@ class WorkedOut:
 
     ledger: Ledger
     found: tuple[Found, ...]
-
-
-def death_rates(probabilities: Array, grid: AgeGrid) -> Array:
-    """Death rates of probabilities, m = q / (n (1 - q / 2)): those who die in a group of n years
-    live half of it.
-
-    Shape:   [..., age] -> [..., age].
-    Missing: nan for the open group, in which all die whatever the rate.
-    Source:  Preston, Heuveline & Guillot (2001), Demography, ch. 3 (with a = n / 2).
-    >>> death_rates(np.array([0.01, 0.2, 1.0]), AgeGrid((0, 1, 5)))
-    array([0.01005025, 0.05555556,        nan])
-    """
-    closed = probabilities / (grid.widths * (1 - probabilities / 2))
-    closed[..., -1] = np.nan
-    return np.asarray(closed)
 
 
 def worked_out(
@@ -58,7 +43,7 @@ def worked_out(
         if not beyond:
             _with_people(ledger, block.pick(stated), kind, made, found)
     if kind == "probability":
-        found += [_no_open_rate(block) for block in made]
+        found += [one for block in made for one in _open_group(block)]
     return WorkedOut(replace(ledger, blocks=(*ledger.blocks, *made)), tuple(found))
 
 
@@ -142,8 +127,11 @@ def _alone(ledger: Ledger, rates: Block) -> Iterator[Found]:
         yield Found("rates_without_population", rates.fault(rates.row[here], values))
 
 
-def _no_open_rate(deaths: Block) -> Found:
-    return Found(
-        "open_group_unknown",
-        deaths.fault(deaths.row[:, -1], {"age": deaths.grid.labels[-1]}),
-    )
+def _open_group(deaths: Block) -> Iterator[Found]:
+    """Of probabilities: where the rate of the open group was worked out, and where it could not."""
+    unknown = np.isnan(deaths.values[:, -1])
+    values: dict[str, Value] = {"age": deaths.grid.labels[-1]}
+    if unknown.any():
+        yield Found("open_group_unknown", deaths.fault(deaths.row[unknown, -1], values))
+    if not unknown.all():
+        yield Found("open_group_worked_out", deaths.fault(deaths.row[~unknown, -1], values))

@@ -88,15 +88,28 @@ CHECKS: tuple[Check[Sequence[Found]], ...] = (
     ),
     Check(
         key="open_group_unknown",
-        severity="warning",
-        meaning="In the open age group all die, at whatever rate: its probability is 1 and says "
-        "nothing of how many die in a year. Its deaths are left unknown, and with them life "
-        "expectancy.",
+        severity="error",
+        meaning="In the open age group all die, at whatever rate: its probability is 1 and does "
+        "not say how many die in a year. The probabilities below it do not show it either: there "
+        "are fewer than three groups from age 60 on, or they do not rise.",
         found="a probability of dying for the open age group {age}",
-        expected="a death rate, or a count of deaths, for it",
-        remedy="Hand in death rates or deaths instead, if they are to be had; ages below are not "
-        "touched.",
+        expected="death rates, or deaths, with an open age group; or probabilities in at least "
+        "three groups from age 60 on",
+        remedy="Hand in death rates or deaths instead.",
         find=_told("open_group_unknown"),
+    ),
+    Check(
+        key="open_group_worked_out",
+        severity="warning",
+        meaning="In the open age group all die, at whatever rate: its probability is 1 and does "
+        "not say how many die in a year. Its rate is worked out by going on with the rise of the "
+        "rates from age 60.",
+        found="a probability of dying for the open age group {age}",
+        expected="death rates or deaths, if they are to be had",
+        remedy="Say in the note that the rate of the open age group is worked out; compare life "
+        "expectancy with a published one.",
+        find=_told("open_group_worked_out"),
+        source="Gompertz (1825), Philosophical Transactions of the Royal Society 115",
     ),
     Check(
         key="rate_of_unknown",

@@ -117,6 +117,17 @@ def rated(table: list[Row] = SOUND, **mapping: object) -> Handed:
     return replace(counts(csv(told), **columns), role="rates", name="rates.csv")
 
 
+def by_fives() -> list[Row]:
+    """Deaths that rise by half from group to group, among people that thin out."""
+    ages = ["0", "1-4", *(f"{age}-{age + 4}" for age in range(5, 85, 5)), "85+"]
+    return [
+        {"area": "north", "year": year, "sex": "f", "age": age, "deaths": d, "population": 9_000}
+        for year in (2010, 2011)
+        for number, age in enumerate(ages)
+        for d in [round(9 * 1.5 ** (number / 1.5)) + year % 3]
+    ]
+
+
 def january(table: list[Row]) -> Handed:
     return population(table, population_is="january")
 
@@ -184,6 +195,7 @@ WORKED_OUT_CASES = (
     Case("rate_too_high", lambda: [rated(units=(("rate", "1000"),))]),
     Case("probability_above_one", lambda: [rated(units=(("rate", "10"),), rate_is="probability")]),
     Case("open_group_unknown", lambda: [rated(rate_is="probability")]),
+    Case("open_group_worked_out", lambda: [rated(by_fives(), rate_is="probability")]),
     Case(
         "rate_of_unknown",
         lambda: [rated([*SOUND, SOUND[0] | {"age": "not stated"}])],
