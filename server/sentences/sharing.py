@@ -29,13 +29,15 @@ def report(shared: Mapping[str, float], left_out: Mapping[str, float]) -> str:
     if shared:
         said.append(
             _(
-                "Of unknown sex, age or area, and shared out in proportion to the counts of the"
-                " same year that state all: {counts}. The sums are kept.",
+                "{counts} did not state their sex, age or area and were shared out in proportion to"
+                " those of the same year that do. The sums are kept.",
                 counts=_counts(shared),
             )
         )
     if left_out:
-        said.append(_("Left out: {counts}.", counts=_counts(left_out)))
+        said.append(
+            _("{counts} that do not state all of these were left out.", counts=_counts(left_out))
+        )
     return " ".join(said)
 
 

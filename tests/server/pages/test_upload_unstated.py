@@ -53,8 +53,8 @@ def test_the_report_shows_counts_before_and_after(salt: Session) -> None:
     built = upload_problems.build(salt, upload.id)
     assert not built.errors.tables
     assert built.shared_out == (
-        "Of unknown sex, age or area, and shared out in proportion to the counts of the same year"
-        " that state all: 11 deaths. The sums are kept."
+        "11 deaths did not state their sex, age or area and were shared out in proportion to those"
+        " of the same year that do. The sums are kept."
     )
     assert [row.cells for row in built.table("not_stated").rows] == [
         ("2002", "deaths", 648.0, 0.0, 0.0, 3.0, 0.0, 651.0),
@@ -64,7 +64,8 @@ def test_the_report_shows_counts_before_and_after(salt: Session) -> None:
     built = upload_problems.build(
         salt, checked_upload(salt, counts_csv() + BESIDE, mapping=chosen).id
     )
-    assert built.shared_out.endswith("8 deaths. The sums are kept. Left out: 3 deaths.")
+    assert built.shared_out.startswith("8 deaths did not state")
+    assert built.shared_out.endswith("3 deaths that do not state all of these were left out.")
     plain_one = checked_upload(salt, counts_csv(), mapping=CHOSEN)
     assert upload_problems.build(salt, plain_one.id).shared_out == ""
 
@@ -103,4 +104,3 @@ def test_a_figure_says_how_many_deaths_were_shared_out(salt: Session) -> None:
     said = r"Not stated\. (\d[.\d]*) of the [\d,]+ deaths did not state their sex, age or area\."
     shared = {sex: re.search(said, computed(f"north.{sex}.2001")) for sex in "fmp"}
     assert {sex: found and found[1] for sex, found in shared.items()} == SHARED
-
