@@ -8,12 +8,34 @@ from contextlib import ExitStack
 from dataclasses import replace
 from pathlib import Path
 
-from server.cli import database, demo, editions, erase, figure, hand_in, life_tables, rebuild, serve
+from server.cli import (
+    database,
+    demo,
+    editions,
+    erase,
+    figure,
+    hand_in,
+    life_tables,
+    rebuild,
+    reproduce,
+    serve,
+)
 from server.cli.refusals import REFUSALS, exit_code, sentence
 from server.config import Config
 from server.sentences.text import _, speaking
 
-COMMANDS = (demo, serve, database, hand_in, figure, life_tables, editions, rebuild, erase)
+COMMANDS = (
+    demo,
+    serve,
+    database,
+    hand_in,
+    figure,
+    life_tables,
+    editions,
+    rebuild,
+    reproduce,
+    erase,
+)
 
 
 def parser() -> argparse.ArgumentParser:

@@ -143,7 +143,7 @@ def test_cautions_stand_where_the_figure_is(isle: Session) -> None:
     assert "below 20,000" in few["Few people"].lower()
     assert "nil" in few["No deaths"]
     beside = [one.word for one in page(isle, "rock.f.2014").cautions if one.beside]
-    assert beside == ["Provisional", "Few people"]
+    assert beside == ["Provisional", "Moved before", "Few people"]
 
 
 def test_the_year_before_stands_beside_where_there_is_one(isle: Session) -> None:

@@ -1,0 +1,28 @@
+"""The form that looks a printed table up, and its answer as a page and as JSON."""
+
+from starlette.testclient import TestClient
+
+TREND = (
+    "/c/isle/1/trend{twin}?of=e0&area=north&sex=f&from=2012&to=2014&figures=released"
+    "&settings=almanac-1"
+)
+
+
+def test_a_saved_file_is_looked_up(reader: TestClient) -> None:
+    assert "Look it up" in reader.get("/reproduce").text
+    content = reader.get(TREND.format(twin=".xlsx")).content
+    sent = {"file": ("trend.xlsx", content, "application/octet-stream")}
+    page = reader.post("/reproduce", files=sent)
+    assert page.status_code == 200
+    assert "All 6 figures of trend.xlsx are matched." in page.text
+    told = reader.post("/reproduce", files=sent, data={"as": "json"}).json()
+    assert {row["verdict"] for row in told["figures"]["figures"]["rows"]} == {"matched"}
+    assert reader.get("/uploads").text.count("trend.xlsx") == 0
+
+
+def test_what_cannot_be_looked_up_is_refused(reader: TestClient) -> None:
+    assert reader.post("/reproduce", data={"edition": "1"}).status_code == 422
+    empty = {"file": ("t.csv", b"", "text/csv")}
+    assert reader.post("/reproduce", files=empty).status_code == 400
+    table = {"file": ("t.csv", b"area,sex,year,value\nnorth,f,2014,8\n", "text/csv")}
+    assert reader.post("/reproduce", files=table, data={"edition": "7"}).status_code == 400
