@@ -39,6 +39,10 @@ READ = {
     f"?of=e0&area=quillmere&sex=f&sex=m&from=1999&to=2023{_CHOICES}",
     "comparison-broken": "/c/quillmere/3/comparison"
     f"?this=quillmere.f.2020&that=quillmere.f.2005&of=e0{_CHOICES}",
+    "changes": "/c/quillmere/2/changes?since=1&figures=released&settings=almanac-1",
+    "account": "/c/quillmere/2/account?of=e0&at=northlade.m.2021&since=1&figures=released"
+    "&settings=almanac-2&settings_then=almanac-1",
+    "reproduce": "/reproduce",
     "methods": "/methods",
     "checks": "/checks",
     "words": "/words",
