@@ -9,10 +9,11 @@ from hypothesis import strategies as st
 from numpy.testing import assert_allclose, assert_array_equal
 from scipy.stats import chi2, gamma, norm
 
-from engine.ages import AgeGrid
+from engine.ages import AgeGrid, Array
 from engine.chain import gradient, run
-from engine.chance import KINDS, Chance, chances, limits, miscount, told
+from engine.chance import KINDS, Chance, astray, chances, limits, miscount, told
 from engine.indicators import INDICATORS
+from engine.panel import Panel
 from engine.settings import SETTINGS
 from tests.factories import complete, gompertz_panel
 
@@ -135,3 +136,14 @@ def test_the_error_of_a_group_is_that_of_the_age_it_begins_at() -> None:
     grid = AgeGrid((0, 10, 15, 80, 84, 85, 90))
     assert_array_equal(miscount(grid, steps), [0, 0, 0.015, 0.015, 0.015, 0.05, 0.05])
     assert not miscount(grid, PLAIN).any()
+
+
+def test_each_population_is_out_by_itself_and_half_of_what_both_ways_move() -> None:
+    here, there = gompertz_panel(people=4e5), gompertz_panel(people=9e5, level=3e-5)
+    wrong = replace(PLAIN, population_error=((0, 3.0),))
+
+    def lived(this: Panel, that: Panel) -> Array:
+        return np.asarray(this.exposure.sum(axis=-1) + 2 * that.exposure.sum(axis=-1))
+
+    assert_allclose(astray(lived, here, there, settings=wrong), np.hypot(0.03 * 4e5, 0.06 * 9e5))
+    assert_array_equal(astray(lived, here, there, settings=PLAIN), 0.0)
