@@ -11,7 +11,7 @@ from server.cli.tables import add_form, show
 from server.config import Config
 from server.exports.table import Column, Row, Table
 from server.exports.twin import Twin
-from server.pages import cells, frames
+from server.pages import cells, frames, trend_tables
 from server.results.holdings import Holdings, holdings
 from server.results.questions import DEFAULT_SETTINGS, TrendQuestion, address
 from server.results.series import Series, series
@@ -110,6 +110,11 @@ def _twin(known: Heading, found: list[Series]) -> Twin:
     )
 
 
+def _marks(found: Series, line: int, at: int) -> tuple[str, ...]:
+    own = trend_tables.mark(found, line, at)
+    return ("", "", "", "", own, own, own, "")
+
+
 def _rows(found: Series) -> list[Row]:
     unit = found.indicator.unit
     return [
@@ -123,6 +128,7 @@ def _rows(found: Series) -> list[Row]:
                 _(unit.label),
             ),
             provisional=found.status[line][at] == "provisional",
+            marks=_marks(found, line, at),
             decimals=unit.decimals,
         )
         for line, (area, sex) in enumerate(found.lines)

@@ -9,6 +9,7 @@ from typing import Any
 
 import orjson
 
+from server.exports import status
 from server.exports.flat import all_rows, plain
 from server.exports.table import Column, Gap, Row, Table
 from server.exports.twin import Told, Twin
@@ -55,14 +56,27 @@ def _column(column: Column) -> dict[str, str]:
 
 def _row(table: Table, row: Row) -> dict[str, Any]:
     out: dict[str, Any] = {}
-    for column, cell in zip(table.columns, row.cells, strict=True):
+    seen = status.observed(table)
+    own: dict[str, str] = {}
+    for at, (column, cell) in enumerate(zip(table.columns, row.cells, strict=True)):
+        mark = status.of_cell(row, at, column) if at in seen else ""
         if isinstance(cell, Gap):
             reason = {"reason": cell.reason} if cell.reason else {}
-            out[column.key] = {"missing": cell.kind.value} | reason
-        else:
-            out[column.key] = plain(cell, table, column)
+            secret = {"conf_status": status.CONFIDENTIAL} if status.withheld(row, at) else {}
+            known = {"obs_status": mark} if mark else {}
+            out[column.key] = {"missing": cell.kind.value} | reason | known | secret
+            continue
+        if mark and mark != status.of_row(row):
+            own[column.key] = mark
+        out[column.key] = plain(cell, table, column)
     if row.second:
         out["remark"] = row.second
     if row.provisional:
         out["provisional"] = True
+    if row.revised:
+        out["revised"] = True
+    if seen:
+        out["obs_status"] = status.of_row(row)
+    if own:
+        out["own_obs_status"] = own
     return out

@@ -48,6 +48,7 @@ class Row:
     href: str = ""
     shown: str = ""  # printed in place of the first cell: the name behind a code
     decimals: int | None = None  # where every row is in a unit of its own: instead of the column's
+    revised: bool = False  # its counts are not those of the edition before
     estimated: bool = False  # its numbers rest on estimates; not those of `counted` columns
     marks: tuple[str, ...] = ()  # status of each cell, where it is not that of the row
 

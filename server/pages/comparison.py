@@ -14,6 +14,7 @@ from server.pages import frames, provisional
 from server.pages.choices import Grouped, Offer, offer
 from server.pages.choices import indicators as offered
 from server.pages.page import Caution, Frame, Page
+from server.pages.statuses import marked, marks
 from server.pages.withholding import caution, charts_given, tables_given
 from server.results.comparison import Comparison, comparison
 from server.results.explaining import decomposable
@@ -105,7 +106,10 @@ def _tables(found: Comparison) -> tuple[Table, ...]:
         made += [contributions.groups(found), contributions.ages(found)]
     if kinds.told(found.explained.kinds) and not found.same:
         made.append(contributions.kinds(found))
-    return tables_given((*made, tables.survivors(found)), found.this.loaded, found.that.loaded)
+    shown = tables_given((*made, tables.survivors(found)), found.this.loaded, found.that.loaded)
+    this, that = (marks(found.holdings, side.of, side.loaded) for side in (found.this, found.that))
+    both = {"this": this, "that": that}
+    return tuple(marked(table, this.beside(that), both) for table in shown)
 
 
 def _frame(found: Comparison) -> Frame:

@@ -6,7 +6,7 @@ from dataclasses import asdict, dataclass, field
 from engine import settings as named
 from engine.indicators import INDICATORS
 from server.exports.table import Cell, Column, Row, Table
-from server.pages import cells
+from server.pages import cells, trend_tables
 from server.results.contents import Contents
 from server.results.questions import PopulationYear, PopulationYearQuestion, address
 from server.results.series import Series
@@ -52,8 +52,10 @@ def _area(found: Contents, newest: Series, at: int, lines: range) -> Row:
     for index in lines:
         line += cells.triple(newest.estimate[index, 0], INDICATORS["e0"].unit, settings)
     held = [index for index in lines if newest.status[index][0]]
+    own = [trend_tables.mark(newest, index, 0) for index in lines for _limit in range(3)]
     return Row(
         tuple(line),
+        marks=("", *own),
         provisional=any(newest.status[index][0] == "provisional" for index in held),
         href=_address(found, newest, held[0]) if held else "",
         shown=area.name,

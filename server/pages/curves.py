@@ -14,6 +14,7 @@ from server.pages import curves_tables as tables
 from server.pages import frames
 from server.pages.choices import Choice, choice
 from server.pages.page import Caution, Frame, Page
+from server.pages.statuses import marked, marks
 from server.pages.withholding import caution, charts_given, tables_given
 from server.results.curves import Curves, curves, enough_lived
 from server.results.laws import rivals
@@ -95,7 +96,8 @@ def _tables(found: Curves) -> tuple[Table, ...]:
         tables.relation(found.related),
     )
     filled = (table for table in made if table is not None and table.rows)
-    return tables_given(filled, found.loaded)
+    own = marks(found.holdings, found.of, found.loaded)
+    return tuple(marked(table, own) for table in tables_given(filled, found.loaded))
 
 
 def _answer(found: Curves) -> Sentence:

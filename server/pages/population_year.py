@@ -17,6 +17,7 @@ from server.pages import population_year_rates as rates
 from server.pages import population_year_tables as tables
 from server.pages.choices import Choice, choice
 from server.pages.page import Caution, Frame, Page
+from server.pages.statuses import marked, marks
 from server.pages.withholding import caution, charts_given, tables_given
 from server.results.account import AccountQuestion
 from server.results.loading import Loaded
@@ -110,7 +111,16 @@ def _tables(found: Findings) -> tuple[Table, ...]:
         made += [tables.gains(found), models.avoidable(found)]
     implied = models.implied(found)
     made += [implied] if implied else []
-    return tables_given((table for table in made if table.rows), *_sides(found))
+    shown = tables_given((table for table in made if table.rows), *_sides(found))
+    return tuple(_marked(found, table) for table in shown)
+
+
+def _marked(found: Findings, table: Table) -> Table:
+    own = marks(found.holdings, found.of, found.loaded)
+    if found.before is None:
+        return marked(table, own)
+    then = marks(found.holdings, found.before.of, found.before.loaded)
+    return marked(table, own, {"before": then, "change": own.beside(then)})
 
 
 def _sides(found: Findings) -> tuple[Loaded | None, Loaded | None]:

@@ -3,9 +3,11 @@
 import numpy as np
 
 from engine.estimates import Estimate
+from server.exports import status
 from server.exports.table import Cell, Column, Row, Table
 from server.pages import breaks as of_breaks
 from server.pages.cells import columns, triple
+from server.results.questions import PopulationYear
 from server.results.series import Series
 from server.sentences import breaks as say
 from server.sentences import names
@@ -31,7 +33,10 @@ def years(found: Series) -> Table:
         cells += [_triple(found, line, at)[0] for line in range(len(found.lines))]
         provisional = any(status[at] == "provisional" for status in found.status)
         here = [one for one in found.broken if one.period == found.periods[at]]
-        rows.append(Row(tuple(cells), provisional=provisional, second=say.second(here)))
+        own = tuple(mark(found, line, at) for line in range(len(found.lines)))
+        rows.append(
+            Row(tuple(cells), provisional=provisional, second=say.second(here), marks=("", *own))
+        )
     label = _(found.indicator.label)
     return Table("years", f"{label}, {_(unit.label)}", tuple(heads), tuple(rows))
 
@@ -51,8 +56,26 @@ def estimates(found: Series) -> Table:
     for line, (area, sex) in enumerate(found.lines):
         for at, period in enumerate(found.periods):
             cells: tuple[Cell, ...] = (area, sex, period, *_triple(found, line, at))
-            rows.append(Row((*cells, found.status[line][at])))
+            own = mark(found, line, at)
+            one = PopulationYear(area, sex, period)
+            rows.append(
+                Row(
+                    (*cells, found.status[line][at]),
+                    revised=one in found.holdings.revised,
+                    marks=("", "", "", own, own, own, ""),
+                )
+            )
     return Table("estimates", _("Every figure with its interval"), heads, tuple(rows))
+
+
+def mark(found: Series, line: int, at: int) -> str:
+    """The mark of one figure (server/exports/status.py)."""
+    one = PopulationYear(*found.lines[line], found.periods[at])
+    return status.first_of(
+        status.BREAK if found.holdings.broken(one) else "",
+        status.ESTIMATED if found.protected[line][at] or found.shared_out[line][at] else "",
+        status.PROVISIONAL if found.status[line][at] == "provisional" else "",
+    )
 
 
 def breaks(found: Series) -> tuple[Table, ...]:

@@ -26,6 +26,11 @@ class Holdings:
     periods: tuple[str, ...]
     status: dict[PopulationYear, str]
     breaks: tuple[Break, ...] = ()
+    revised: frozenset[PopulationYear] = frozenset()  # this edition changed their counts
+
+    def broken(self, one: PopulationYear) -> bool:
+        """Whether a break lies before its year: it is the first of another kind."""
+        return any(found.period == one.period for found in parting(self.breaks, one.area))
 
     def name(self, area: str) -> str:
         """The area's name; its code where it has none."""
@@ -111,4 +116,5 @@ def holdings(session: Session, collection: str, number: int) -> Holdings:
         contents.periods,
         {PopulationYear(*key): status for key, status in contents.status.items()},
         breaks.listing(session, collection, number),
+        frozenset(PopulationYear(*key) for key in contents.revised),
     )

@@ -28,6 +28,7 @@ class Loaded:
     withheld: frozenset[int] = frozenset()  # starts of its groups whose deaths only stand in
     protected: bool = False  # something it rests on is withheld
     births_withheld: frozenset[str] = frozenset()  # of engine.panel.BIRTHS
+    estimated: bool = False  # its counts were split by shares, or worked out from rates
 
     def withheld_on(self, grid: AgeGrid) -> NDArray[np.bool_]:
         """Groups of a grid it can be summed to that hold a withheld one, [age]."""
@@ -175,7 +176,14 @@ def _assembled(cells: Cells, pool: _Pool) -> Loaded | None:
     if own is None:
         status = _status((women.status, men.status))
         withheld = women.births_withheld | men.births_withheld
-        return Loaded(together, status, women.withheld | men.withheld, protected, withheld)
+        return Loaded(
+            together,
+            status,
+            women.withheld | men.withheld,
+            protected,
+            withheld,
+            women.estimated or men.estimated,
+        )
     # the counts of persons may hold deaths of unknown sex: only the first-year rule is taken over
     births = np.where(np.isnan(own.panel.births), together.births, own.panel.births)
     mix = {name: getattr(together, name) for name in ("infant_weight", "infant_ratio")}
@@ -196,6 +204,7 @@ def _summed(cells: Cells, pool: _Pool) -> Loaded | None:
         frozenset().union(*(part.withheld for part in found)),
         any(part.protected for part in found),
         frozenset().union(*(part.births_withheld for part in found)),
+        any(part.estimated for part in found),
     )
 
 
@@ -224,6 +233,7 @@ def _single(cells: Cells, pool: _Pool, period: str) -> Loaded | None:
             for name, one in zip(BIRTHS, births, strict=True)
             if one is not None and one.withheld
         ),
+        deaths.estimated or years.estimated,
     )
 
 

@@ -53,6 +53,7 @@ class Series:
     estimate: Estimate
     estimated: tuple[bool, ...]  # [line]: some year's counts were shared out or worked out
     protected: tuple[tuple[bool, ...], ...]  # [line][period]: counts behind it are withheld
+    shared_out: tuple[tuple[bool, ...], ...]  # [line][period]: its counts are estimates
     status: tuple[tuple[str, ...], ...]  # [line][period]: final, provisional; "" where not held
     open_ages: tuple[tuple[int | None, ...], ...]  # [line][period]: where the table ends
     courses: tuple[Course, ...]  # [line]: of the newest years that no break parts
@@ -165,6 +166,7 @@ def series(
             for row in _rows(found, len(periods))
         ),
         protected=_rows([one is not None and one.protected for one in found], len(periods)),
+        shared_out=_rows([one is not None and one.estimated for one in found], len(periods)),
         status=_rows([one.status if one else "" for one in found], len(periods)),
         open_ages=_rows([one.panel.grid.open_age if one else None for one in found], len(periods)),
         courses=tuple(told[: len(lines)]),

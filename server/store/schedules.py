@@ -6,8 +6,8 @@ from functools import lru_cache
 from typing import Any
 
 import numpy as np
-from sqlalchemy import Select, func, select
-from sqlalchemy.orm import Session
+from sqlalchemy import Select, and_, case, func, select
+from sqlalchemy.orm import Session, aliased
 from sqlalchemy.sql import ColumnElement
 
 from engine.ages import AgeGrid, Array
@@ -27,6 +27,7 @@ class Contents:
     periods: tuple[str, ...]
     measures: tuple[str, ...]
     status: dict[tuple[str, str, str], str]  # (area, sex, period): provisional if any measure is
+    revised: frozenset[tuple[str, str, str]]  # those this edition changed
 
 
 def load(
@@ -96,6 +97,7 @@ def contents(session: Session, collection: str, number: int) -> Contents:
             Schedule.period,
             Schedule.measure,
             func.max(Schedule.status).label("status"),  # 'provisional' comes after 'final'
+            func.max(case((_revised(number), 1), else_=0)).label("revised"),
         )
         .where(Schedule.collection_id == collections.id_of(collection), Schedule.holds_in(number))
         .group_by(Schedule.area, Schedule.sex, Schedule.period, Schedule.measure)
@@ -110,6 +112,22 @@ def contents(session: Session, collection: str, number: int) -> Contents:
         periods=tuple(sorted({row.period for row in rows})),
         measures=tuple(sorted({row.measure for row in rows})),
         status=status,
+        revised=frozenset((row.area, row.sex, row.period) for row in rows if row.revised),
+    )
+
+
+def _revised(number: int) -> ColumnElement[bool]:
+    """Schedules that this edition has in place of others of the one before."""
+    before = aliased(Schedule)
+    return and_(
+        Schedule.first == number,
+        select(before.id)
+        .where(
+            before.collection_id == Schedule.collection_id,
+            *(getattr(before, name) == getattr(Schedule, name) for name in Schedule.KEY),
+            before.until == number,
+        )
+        .exists(),
     )
 
 

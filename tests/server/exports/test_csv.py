@@ -18,17 +18,19 @@ def read(content: bytes) -> list[dict[str, str]]:
 
 def test_the_bytes_of_a_table_with_every_kind_of_cell() -> None:
     assert csv.write(YEARS).decode() == (
-        "year,area,e0,e0_missing,change,change_missing,remark,provisional\r\n"
-        "2011,'=1+1,0.3333333333333333,,-0.125,,,\r\n"
-        '2012,"a ""quoted"", name",,withheld,0.5,,,yes\r\n'
-        '2013,"line\nbreak",82.0,,,nil,a remark,\r\n'
-        "sum,,82.5,,0.375,,,\r\n"
+        "year,area,e0,e0_missing,e0_obs_status,e0_conf_status,change,change_missing,remark,"
+        "provisional,obs_status\r\n"
+        "2011,'=1+1,0.3333333333333333,,A,F,-0.125,,,,A\r\n"
+        '2012,"a ""quoted"", name",,withheld,Q,C,0.5,,,yes,P\r\n'
+        '2013,"line\nbreak",82.0,,A,F,,nil,a remark,,A\r\n'
+        "sum,,82.5,,A,F,0.375,,,,A\r\n"
     )
 
 
 def test_a_name_which_may_change_is_left_out() -> None:
     assert csv.write(NAMED).decode() == (
-        "area,e0,e0_missing\r\nst.john,80.5,\r\ncape,,not available\r\n"
+        "area,e0,e0_missing,e0_obs_status,obs_status\r\n"
+        "st.john,80.5,,A,A\r\ncape,,not available,O,A\r\n"
     )
 
 

@@ -21,17 +21,41 @@ def test_what_the_file_holds() -> None:
         "unit": "years",
         "group": "Saltmarsh",
     }
-    assert figures["rows"][0] == {"year": 2011, "area": "=1+1", "e0": 1 / 3, "change": -0.125}
-    assert figures["rows"][1]["e0"] == {"missing": "withheld", "reason": "few deaths"}
+    assert figures["rows"][0] == {
+        "year": 2011,
+        "area": "=1+1",
+        "e0": 1 / 3,
+        "change": -0.125,
+        "obs_status": "A",
+    }
+    assert figures["rows"][1]["e0"] == {
+        "missing": "withheld",
+        "reason": "few deaths",
+        "obs_status": "Q",
+        "conf_status": "C",
+    }
     assert figures["rows"][1]["provisional"] is True
-    assert figures["rows"][2]["change"] == {"missing": "nil"}
-    assert figures["total"] == {"year": "sum", "area": "", "e0": 82.5, "change": 0.375}
+    assert figures["rows"][1]["obs_status"] == "P"
+    assert figures["rows"][2]["change"] == {"missing": "nil", "obs_status": "A"}
+    assert figures["total"] == {
+        "year": "sum",
+        "area": "",
+        "e0": 82.5,
+        "change": 0.375,
+        "obs_status": "A",
+    }
 
 
 def test_a_sum_without_a_number_is_null_and_no_text() -> None:
     blank = replace(YEARS, total=Row(("sum", "", "", 0.375)))
     total = orjson.loads(json.write(a_twin(blank)))["figures"]["years"]["total"]
-    assert total == {"year": "sum", "area": "", "e0": None, "change": 0.375}
+    assert total == {
+        "year": "sum",
+        "area": "",
+        "e0": None,
+        "change": 0.375,
+        "obs_status": "A",
+    }
 
 
 def test_notices_and_new_names_leave_the_bytes_of_the_figures_as_they_are() -> None:
@@ -46,7 +70,11 @@ def test_notices_and_new_names_leave_the_bytes_of_the_figures_as_they_are() -> N
 def test_names_stand_beside_the_figures() -> None:
     content = orjson.loads(json.write(a_twin(NAMED)))
     assert content["tables"]["areas"]["names"] == {"st.john": "St John"}
-    assert content["figures"]["areas"]["rows"][0] == {"area": "st.john", "e0": 80.5}
+    assert content["figures"]["areas"]["rows"][0] == {
+        "area": "st.john",
+        "e0": 80.5,
+        "obs_status": "A",
+    }
 
 
 def test_every_number_of_the_table_is_in_the_file() -> None:

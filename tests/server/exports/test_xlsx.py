@@ -38,7 +38,13 @@ def test_the_first_sheet_says_what_the_file_is() -> None:
 def test_names_behind_codes_stand_on_the_first_sheet() -> None:
     book = opened(xlsx.write(a_twin(NAMED)))
     assert ("name", "st.john", "St John") in set(book["about"].values)
-    assert next(book["areas"].values) == ("area", "e0", "e0_missing")
+    assert next(book["areas"].values) == (
+        "area",
+        "e0",
+        "e0_missing",
+        "e0_obs_status",
+        "obs_status",
+    )
 
 
 def test_equal_content_gives_equal_bytes_at_any_time() -> None:
