@@ -172,19 +172,24 @@ def simulated(
         )
     rows, names = flat(panel), np.asarray(streams).ravel().tolist()
     found = np.empty((draws, len(names)))
+    counts, worth = rows.counts, rows.worth
     if by == "compiled":
         from engine.compiled.chance import Sampler
         from engine.compiled.rules import rules
 
         sampler = Sampler(rules(panel.grid, settings), draws)
         for row, code in enumerate(names):  # a keyed stream is one population's
-            deaths = _drawn(rows.deaths[row], generator(purpose, code), draws, sampler.counts)
+            deaths = _drawn(counts[row], generator(purpose, code), draws, sampler.counts)
+            if worth is not None:
+                deaths *= worth[row][:, None]
             found[:, row] = sampler.expectancies(
                 deaths, rows.exposure[row], rows.infant_weight[row], rows.infant_ratio[row]
             )
     else:
         for row, code in enumerate(names):
-            deaths = _drawn(rows.deaths[row], generator(purpose, code), draws, _counts)
+            deaths = _drawn(counts[row], generator(purpose, code), draws, _counts)
+            if worth is not None:
+                deaths *= worth[row][:, None]
             chain = run(_copies(rows[row], deaths.T), settings)
             found[:, row] = chain.table.ex[:, 0]
     return Expectancies(found.reshape(draws, *panel.batch_shape), version(by))
