@@ -9,9 +9,9 @@ as soon as one was withdrawn.
 from collections.abc import Collection, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from itertools import islice
-from typing import Any
+from typing import Any, cast
 
-from sqlalchemy import func, insert, literal, select, update
+from sqlalchemy import Table, func, insert, literal, select, update
 from sqlalchemy.orm import Session
 
 from server.store.tables import AreaRange, BasisRange, BreakRange, Edition, Schedule
@@ -99,7 +99,8 @@ def apply(
     own = {"collection_id": collection_id, "first": number}
     for rows in _steps(added):
         # past the mapped classes, which would cost three times as much
-        session.connection().execute(insert(table.__table__), [{**row, **own} for row in rows])
+        plain = cast(Table, table.__table__)
+        session.connection().execute(insert(plain), [{**row, **own} for row in rows])
 
 
 def _rows(
