@@ -1,5 +1,7 @@
 """The rise of death rates with age, over a span and between neighbours."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from scipy.optimize import minimize
@@ -106,3 +108,17 @@ def test_k_at_another_level_is_narrower() -> None:
     wide, narrow = rises(panel, level=0.95), rises(panel, level=0.5)
     known = np.isfinite(wide.value)
     assert np.all((narrow.high - narrow.low)[known] < (wide.high - wide.low)[known])
+
+
+def test_deaths_that_were_shared_out_do_not_make_k_surer() -> None:
+    panel = gompertz_panel(GRIDS["abridged"], people=400_000, seed=3)
+    counted = np.round(panel.deaths / np.linspace(1, 1.3, len(panel.grid)))
+    got = rises(replace(panel, counted=counted), least_deaths=100)
+    at = panel.grid.position(80)
+    (c1, c2), (d1, d2) = counted[at - 1 : at + 1], panel.deaths[at - 1 : at + 1]
+    (e1, e2), k = panel.exposure[at - 1 : at + 1], list(got.at).index(80)
+    assert got.value[k] == pytest.approx(np.log(d2 / e2 / (d1 / e1)) / 5, abs=1e-14)
+    share = binomtest(int(c2), int(c1 + c2)).proportion_ci(0.95, "exact")
+    worth = (d2 / c2) / (d1 / c1)
+    low, high = (np.log(p / (1 - p) * worth * e1 / e2) / 5 for p in share)
+    assert (got.low[k], got.high[k]) == pytest.approx((low, high), abs=1e-9)

@@ -327,6 +327,7 @@ def test_totals_are_compared_with_all_their_parts_known_or_not() -> None:
         return [problem.found for problem in problems if problem.key in kinds]
 
     assert not found([*table, *totals])
+    assert deaths(read(table), "north", "f") == [10, 20, 77]  # persons get nothing of it
     off = [*table[:-4], *rows("north", "p", [20, 50, 199]), table[-1], *totals]
     assert found(off) == [
         "199 persons in north, 2001, age 5+",
