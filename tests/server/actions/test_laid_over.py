@@ -74,15 +74,19 @@ def test_a_merge_is_the_exact_sum_of_the_years_that_stand_and_of_those_handed_in
     assert rebuilt(session)
 
 
-def test_years_before_a_merge_keep_their_codes(session: Session) -> None:
+@pytest.mark.parametrize(
+    ("field", "merged", "left"),
+    [("from", {"2002", "2003"}, {"2001"}), ("to", {"2001", "2002"}, {"2003"})],
+)
+def test_years_outside_a_merge_keep_their_codes(
+    session: Session, field: str, merged: set[str], left: set[str]
+) -> None:
     first(session, COLUMNS)
-    table = (
-        MERGED.replace("name", "from").replace("Mainland", "2002").replace("main,\n", "main,2002\n")
-    )
+    table = f"code,becomes,{field}\nnorth,main,2002\nsouth,main,2002\n"
     made(session, checked_upload(session, areas=table))
     after = held(session, 2)
-    assert {key.period for key in after if key.area == "main"} == {"2002", "2003"}
-    assert {key.period for key in after if key.area == "north"} == {"2001"}
+    assert {key.period for key in after if key.area == "main"} == merged
+    assert {key.period for key in after if key.area == "north"} == left
     assert codes(session, 2) == {*THREE, "main"}
     assert rebuilt(session)
 
