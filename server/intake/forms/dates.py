@@ -69,16 +69,17 @@ def typed_as(text: str) -> str | None:
         return None
     pairs = [(a, b) for a in numbers for b in numbers if a < b]
     usual = [(a, b) for a, b in pairs if (a % 5 == 0 and b == a + 4) or (a, b) == (1, 4)]
-    first, last = (usual or pairs or [(0, 0)])[0]
+    others = [(a, b) for a, b in pairs if a in numbers[:2] and b in numbers[:2]]
+    first, last = (usual or others or [(0, 0)])[0]
     return f"{first}–{last}" if last else ""
 
 
 def _numbers(text: str) -> tuple[int, ...] | None:
-    """Month, day and the last two digits of the year of a date, as far as it has them."""
+    """Month and day of a date; of the first day of a month the last digits of the year too, as
+    10-14 becomes October 2014."""
     if match := _ISO.fullmatch(text):
         year, month, day = (int(part) for part in match.groups())
-        # a group such as 10-14 becomes the first day of October 2014
-        return (month, year % 100) if day == 1 and year % 100 > month else (month, day)
+        return (month, day, year % 100) if day == 1 else (month, day)
     if match := _WITH_YEAR.fullmatch(text):
         return int(match[1]), int(match[2])
     if match := _NAMED.fullmatch(text):

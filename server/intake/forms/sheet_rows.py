@@ -13,6 +13,8 @@ LAST_ROW, LAST_COLUMN = 1_048_576, 16_384  # of any sheet
 MOST_COLUMNS = 2_000  # of a table
 MOST_MERGED = 20_000
 LISTED = 100  # cells that are named one by one
+MARKED = 2_000  # different texts that may be numbers
+_MAY_BE_NUMBER = re.compile(r"[+-]?\d[\d.,' \u00a0\u2009\u202f\u2019]*")
 _REFERENCE = re.compile(r"([A-Z]{1,3})(\d{1,7})")
 _ESCAPED = re.compile(r"_x([0-9A-Fa-f]{4})_")
 
@@ -55,6 +57,7 @@ class SheetRows:
     formulas: int = 0  # cells with one
     valueless: list[str] = field(default_factory=list)  # first cells with a formula and no value
     merged: list[Merged] = field(default_factory=list)
+    marked: dict[str, None] = field(default_factory=dict)  # own texts that may be numbers
 
 
 def sheet_rows(package: Package, part: str, book: Book, decimal: str) -> SheetRows:
@@ -101,6 +104,10 @@ def written(text: str) -> str:
         text = _ESCAPED.sub(lambda match: chr(int(match[1], 16)), text)
     text = " ".join(text.replace(BETWEEN, " ").replace("\0", " ").split())
     return '"' + text.replace('"', '""') + '"' if '"' in text else text
+
+
+def may_be_number(text: str) -> bool:
+    return _MAY_BE_NUMBER.fullmatch(text) is not None
 
 
 def number_text(value: str, decimal: str = ".") -> str:
@@ -164,9 +171,9 @@ class _Reader:
             self._value.append(piece)
 
     def _begin_row(self, given: dict[str, str]) -> None:
-        number = given.get("r")
-        self._row = int(number) if number else self._row + 1
-        if not len(self.sheet.rows) < self._row <= LAST_ROW:
+        before, number = self._row, given.get("r")
+        self._row = int(number) if number else before + 1
+        if not before < self._row <= LAST_ROW:
             raise Broken("rows out of order")
         self._hidden = given.get("hidden") in ("1", "true")
         self._column, self._cells = 0, []
@@ -217,6 +224,8 @@ class _Reader:
             value = "TRUE" if value == "1" else "FALSE"
         elif kind in ("str", "inlineStr"):
             value = written(value)
+            if len(self.sheet.marked) < MARKED and may_be_number(value):
+                self.sheet.marked[value] = None
         if value:
             if self._column > MOST_COLUMNS:
                 raise TooWide(self._row)

@@ -8,11 +8,13 @@ from server.intake.forms.found import Found
 from server.intake.forms.packages import Broken, Package, local, package
 from server.intake.forms.sheet_rows import (
     BETWEEN,
+    MARKED,
     MOST_COLUMNS,
     Book,
     SheetRows,
     TooLarge,
     TooWide,
+    may_be_number,
     place,
     sheet_rows,
     written,
@@ -22,9 +24,7 @@ from server.intake.mapping import Form
 from server.intake.problems import Fault
 
 HEAD = 64_000  # bytes of a sheet in which its size is looked for
-MARKED = 2_000  # different texts that may be numbers
 _SIZE = re.compile(rb'dimension ref="[A-Z]+\d+:([A-Z]+\d+)"')
-_MAY_BE_NUMBER = re.compile(r"[+-]?\d[\d.,' \u00a0\u2009\u202f\u2019]*")
 NO_WORKBOOK = "a zipped file that is no workbook"
 
 
@@ -89,7 +89,7 @@ def _opened(book: Package, form: Form) -> Workbook:
         sure=sure,
         tabs=tuple(exact if one is tab else one for one in tabs),
         cells=cells,
-        texts=tuple(filter(_MAY_BE_NUMBER.fullmatch, texts))[:MARKED],
+        texts=(*cells.marked, *filter(may_be_number, texts))[:MARKED],
         found=tuple(found),
     )
 
