@@ -137,7 +137,7 @@ def _form(looked: Looked) -> list[Field]:
         fields.append(select(f"{role}.sheet", _("Sheet"), tuple(tabs), form.sheet, width="wide"))
     if not reading.sheets:
         signs = ask.delimiters(tuple(NAMES.values()))
-        encodings = tuple(ENCODINGS.items())
+        encodings = ask.encodings(ENCODINGS)
         fields += [
             select(f"{role}.encoding", _("Encoding"), encodings, form.encoding),
             select(

@@ -1,5 +1,7 @@
 """What is asked about the form of a file: its sheet, signs, headings, units and codes."""
 
+from collections.abc import Mapping
+
 from server.sentences import names
 from server.sentences.numbers import whole
 from server.sentences.reading import Options, field, role
@@ -64,6 +66,10 @@ def marks_hint(example: str, *, sure: bool, proposed: str) -> str:
 def delimiters(known: tuple[str, ...]) -> Options:
     """Signs are named, since a tab or a blank cannot be seen."""
     return tuple((name, _(name)) for name in known)
+
+
+def encodings(known: Mapping[str, str]) -> Options:
+    return tuple((code, _(name)) for code, name in known.items())
 
 
 def heading_rows() -> Options:

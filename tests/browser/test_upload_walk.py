@@ -10,6 +10,7 @@ from tests.browser.site import Site
 from tests.browser.visitor import Visitor
 
 DENMARK = Path(__file__).parents[1] / "published" / "denmark_deaths_personyears_1974_2012.csv"
+UGLY = Path(__file__).parents[1] / "ugly" / "01-title-rows-and-totals.csv"
 SCRIPTS = pytest.mark.parametrize("scripts", [True, False], ids=["scripts", "no-scripts"])
 
 
@@ -83,6 +84,39 @@ def test_from_a_file_to_a_comparison(empty_site: Site, visit: Enter, scripts: bo
     page.goto(f"{empty_site.address}/c/denmark/trend")
     page.wait_for_url("**/c/denmark/1/trend?of=e0&area=denmark&sex=f&sex=m&from=1974&to=2012&**")
     look(visitor, scripts)
+
+
+@SCRIPTS
+def test_an_ugly_file_goes_through(empty_site: Site, visit: Enter, scripts: bool) -> None:
+    """Titles, foot notes, decimal commas, Latin-1, totals of ages, sexes and areas."""
+    visitor = visit(empty_site, scripts=scripts)
+    page = visitor.goto("/")
+    page.get_by_role("button", name="Upload files").click()
+    page.get_by_label("Code, such as saltmarsh").fill("kueste")
+    page.get_by_label("Name, such as All deaths, Saltmarsh").fill("Alle Gestorbenen")
+    page.get_by_label("Data owner").fill("Amt")
+    page.get_by_label("One file or several at once").set_input_files(UGLY)
+    page.get_by_role("button", name="Read the files").first.click()
+    page.wait_for_url("**/reading")
+    look(visitor, scripts)
+    assert page.locator("select[name='counts.marks']").input_value() == "comma-point"
+    assert page.locator("select[name='counts.deaths']").input_value() == "Gestorbene"
+    assert page.locator("input[name=whole_name]").input_value() == "Insgesamt"
+    visitor.refusals_expected = True
+    page.evaluate("document.querySelectorAll('[required]').forEach(one => one.required = false)")
+    page.get_by_role("button", name="Check the files").click()
+    page.wait_for_load_state()
+    look(visitor, scripts)
+    assert "answers are missing" in page.locator("h1.answer").inner_text()
+    page.locator("input[name=people][value=residents]").check()
+    page.locator("input[name=dated_by][value=death]").check()
+    page.get_by_label("What population means").select_option("midyear")
+    page.get_by_label("Its date").fill("30 June")
+    page.get_by_label("Where the counts come from").fill("Amt")
+    page.get_by_role("button", name="Check the files").click()
+    page.wait_for_url("**/problems")
+    look(visitor, scripts)
+    assert "can become an edition" in page.locator("h1.answer").inner_text()
 
 
 @SCRIPTS

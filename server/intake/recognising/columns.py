@@ -204,5 +204,5 @@ def _names_are_no_codes(reading: Reading, found: dict[str, Recognised]) -> None:
     if "area" not in fields or "area_name" in fields:
         return
     column = fields["area"]
-    if not all(is_code(value) for value in reading.values(column)):
+    if not all(is_code(value) for value in reading.distinct(column)):
         found[column] = Recognised(column, "area_name", "likely", BY_VALUES)

@@ -4,7 +4,7 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
 from server.intake.lists import NEEDED, field_of
-from server.intake.mapping import NUMBERS, ROLES, Form
+from server.intake.mapping import NUMBERS, Form
 from server.intake.reading import Reading, proposed
 from server.intake.recognising.across import number_of
 from server.intake.recognising.columns import ways
@@ -96,13 +96,12 @@ def _number(column: str) -> str:
 
 
 def _role(numbers: set[str]) -> str:
-    """The role of a file that holds these numbers. Births come with deaths of infants, and rates
-    beside counts are not needed."""
+    """The role of a file that holds these numbers. Births come with deaths of infants, rates with
+    the people they are of; rates beside deaths are not needed."""
     if "births" in numbers:
         return "births"
     if {"deaths", "population"} <= numbers:
         return "counts"
-    found = [role for role in ("deaths", "population") if role in numbers]
-    if not found and "rate" in numbers and "rates" in ROLES:
+    if "rate" in numbers and "deaths" not in numbers:
         return "rates"
-    return found[0] if found else ""
+    return next((role for role in ("deaths", "population") if role in numbers), "")

@@ -39,7 +39,8 @@ NAMES = {
     "fallecidos|obitos|mortes|numero de obitos|decessi|morti|numero di decessi|numero di morti|"
     "overledenen|sterfte|aantal overledenen|overleden|dode|dodsfall|doedsfald|dodsfald|doda|"
     "antal doda|antal dode|zgony|liczba zgonow|zgony ogolem",
-    "population": "population|populations|person years|personyears|person years at risk|pyears|"
+    "population": "population|populations|people|person years|personyears|"
+    "person years at risk|pyears|"
     "pop|exposure|mid year population|midyear population|population at risk|mean population|"
     "average population|estimated population|resident population|usual residents|inhabitants|"
     "residents|personnes annees|population moyenne|habitants|bevolkerung|bevoelkerung|"

@@ -76,6 +76,11 @@ def test_a_region_that_is_no_code_is_a_name() -> None:
     codes = recognised(b"region,year,sex,age,deaths\nN1,1974,f,0,3\n", "deaths")
     names = recognised(b"region,year,sex,age,deaths\nNorth Shore,1974,f,0,3\n", "deaths")
     assert (codes["region"].field, names["region"].field) == ("area", "area_name")
+    rows = b"".join(b"North,1974,f,%d,3\n" % age for age in range(40))
+    late = recognised(
+        b"region,year,sex,age,deaths\n" + rows + b"South Shore,1974,f,0,3\n", "deaths"
+    )
+    assert late["region"].field == "area_name"
 
 
 WIDE = b"""area;year;sex;0;1-4;5+;Total

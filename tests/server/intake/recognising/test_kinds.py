@@ -22,6 +22,7 @@ MUTE = b"year,sex,age,x\n2014,f,0,900\n"
         (b"year,sex,age,deaths,rate per 1000\n2014,f,0,3,3.3\n", "deaths"),
         (b"year,age,deaths_m,deaths_f,pop_m,pop_f\n2014,0,3,4,900,901\n", "counts"),
         ("Jahr;Alter;Geschlecht;Bevölkerung\n2014;0;m;900\n".encode(), "population"),
+        (b"year,sex,age,rate per 100 000,population\n2014,f,0,330,900\n", "rates"),
         (MUTE, ""),
     ],
 )
