@@ -43,10 +43,14 @@ def edge(cuts: Cuts, lane: int, k: int) -> float:
 
 
 @fused
-def cut(rules: Rules, pairs: Pairs, first: int, cuts: Cuts) -> None:
+def cut(rules: Rules, pairs: Pairs, first: int, cuts: Cuts) -> int:
+    """The lines of pairs from the first on; -> how often one is cut at most."""
+    most = 0
     for lane in range(cuts.many.size):
         p = min(first + lane, pairs.start.shape[0] - 1)
         cuts.many[lane] = _cut_line(rules, pairs, p, cuts.at[lane], cuts.toward[lane])
+        most = max(most, cuts.many[lane])
+    return most
 
 
 @fused

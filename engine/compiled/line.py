@@ -30,6 +30,7 @@ class Lines(NamedTuple):
     weight_step: Array
     ratio: Array
     ratio_step: Array
+    infant: Array  # [2, lane]; the first row of mx and of its step
 
 
 class Places(NamedTuple):
@@ -59,7 +60,7 @@ def explain(rules: Rules, lower: Panel, upper: Panel, by_age: Array, difference:
         for name in ("infant_weight", "infant_ratio")
     )
     whole, two, one = (len(rules.starts), LANES), (2, LANES), (LANES,)
-    lines = Lines(*(aligned(*shape) for shape in (whole, whole, two, two, two, two)))
+    lines = Lines(*(aligned(*shape) for shape in (whole, whole, *(two,) * 5)))
     shapes = (one, one, *(whole,) * 5, two, two, one, one)
     places = Places(*(aligned(*shape) for shape in shapes))
     places.ax[:] = rules.widths[:, None] / 2
@@ -80,12 +81,12 @@ def _contributions(
 ) -> None:
     for first in range(0, by_age.shape[0], LANES):
         _load(pairs, first, lines)
-        cut(rules, pairs, first, cuts)
-        places.mean[:] = 0.0
-        for piece in range(cuts.many.max() + 1):
+        most = cut(rules, pairs, first, cuts)
+        _clear(places.mean)
+        for piece in range(most + 1):
             _add_piece(rules, lines, cuts, piece, places)
         _write(places.mean, lines.mx_step, by_age[first : first + LANES])
-        for piece in range(cuts.many.max()):
+        for piece in range(most):
             _add_jumps(rules, lines, cuts, piece, places, by_age[first : first + LANES])
         _differ(rules, lines, places, difference[first : first + LANES])
 
@@ -96,29 +97,36 @@ def _load(pairs: Pairs, first: int, lines: Lines) -> None:
     start, end, weight, ratio = pairs
     last = start.shape[0] - 1
     for x in range(start.shape[1]):
-        for lane in range(LANES):
+        for lane in range(lines.mx.shape[1]):
             p = min(first + lane, last)
             lines.mx[x, lane] = start[p, x]
             lines.mx_step[x, lane] = end[p, x] - start[p, x]
     for sex in range(2):
-        for lane in range(LANES):
+        for lane in range(lines.mx.shape[1]):
             p = min(first + lane, last)
             lines.weight[sex, lane] = weight[0, p, sex]
             lines.weight_step[sex, lane] = weight[1, p, sex] - weight[0, p, sex]
             lines.ratio[sex, lane] = ratio[0, p, sex]
             lines.ratio_step[sex, lane] = ratio[1, p, sex] - ratio[0, p, sex]
+    for lane in range(lines.mx.shape[1]):
+        lines.infant[0, lane], lines.infant[1, lane] = lines.mx[0, lane], lines.mx_step[0, lane]
+
+
+@fused
+def _clear(mean: Array) -> None:
+    for x in range(mean.shape[0]):
+        for lane in range(mean.shape[1]):
+            mean[x, lane] = 0.0
 
 
 @fused
 def _add_piece(rules: Rules, lines: Lines, cuts: Cuts, piece: int, places: Places) -> None:
     """The gradient at the nodes of one piece of each line."""
-    low, width = np.empty(LANES), np.empty(LANES)
-    for lane in range(LANES):
-        low[lane] = edge(cuts, lane, piece)
-        width[lane] = edge(cuts, lane, piece + 1) - low[lane]
     for node in range(NODES.size):
-        places.t[:] = low + width * ((1 + NODES[node]) / 2)
-        places.share[:] = width * (WEIGHTS[node] / 2)
+        for lane in range(places.t.size):
+            low, high = edge(cuts, lane, piece), edge(cuts, lane, piece + 1)
+            places.t[lane] = low + (high - low) * ((1 + NODES[node]) / 2)
+            places.share[lane] = (high - low) * (WEIGHTS[node] / 2)
         _add_slopes(rules, lines, places)
 
 
@@ -134,43 +142,49 @@ def _add_jumps(
     rules: Rules, lines: Lines, cuts: Cuts, piece: int, places: Places, by_age: Array
 ) -> None:
     """What e0 jumps by where the infant rate moves through the break of a first-year rule: e0 just
-    above the break less e0 just below. Of equal cuts the last one counts."""
-    way, lanes = np.zeros(LANES), by_age.shape[0]
-    for lane in range(lanes):
-        places.t[lane] = edge(cuts, lane, piece + 1)
-        toward = cuts.toward[lane, piece] if piece < cuts.many[lane] else 0.0
-        last = places.t[lane] < edge(cuts, lane, piece + 2)
-        way[lane] = toward if last and toward == np.sign(lines.mx_step[0, lane]) else 0.0
-    if not np.any(way):
+    above the break less e0 just below."""
+    some = False
+    for lane in range(places.t.size):
+        places.t[lane], places.share[lane] = edge(cuts, lane, piece + 1), 0.0
+        some |= _jump(lines, cuts, lane, piece) != 0
+    if not some:
         return
-    start, step = lines.mx[0].copy(), lines.mx_step[0].copy()
-    for side in (1.0, -1.0):
-        lines.mx[0], lines.mx_step[0] = (
-            start * (1 + side * BESIDE_JUMP),
-            step * (1 + side * BESIDE_JUMP),
-        )
-        _expect(rules, lines, places)
-        for lane in range(lanes):
-            if way[lane] != 0:
-                by_age[lane, 0] += side * way[lane] * places.left[lane]
-    lines.mx[0], lines.mx_step[0] = start, step
+    for side in (1, -1):
+        _scale(lines, 1 + side * BESIDE_JUMP)
+        _add_slopes(rules, lines, places)
+        for lane in range(by_age.shape[0]):
+            jump = _jump(lines, cuts, lane, piece)
+            by_age[lane, 0] += side * jump * places.left[lane] if jump != 0 else 0.0
+    _scale(lines, 1.0)
+
+
+@fused
+def _jump(lines: Lines, cuts: Cuts, lane: int, piece: int) -> float:
+    """In which direction the infant rate moves through a break at the end of a piece, if it does;
+    of equal cuts the last one counts."""
+    if piece >= cuts.many[lane] or edge(cuts, lane, piece + 1) >= edge(cuts, lane, piece + 2):
+        return 0.0
+    toward = cuts.toward[lane, piece]
+    return float(toward if toward == np.sign(lines.infant[1, lane]) else 0.0)
+
+
+@fused
+def _scale(lines: Lines, times: float) -> None:
+    """The infant rate, so many times what it is."""
+    for lane in range(lines.infant.shape[1]):
+        lines.mx[0, lane] = lines.infant[0, lane] * times
+        lines.mx_step[0, lane] = lines.infant[1, lane] * times
 
 
 @fused
 def _differ(rules: Rules, lines: Lines, places: Places, difference: Array) -> None:
-    places.t[:] = 1.0
-    _expect(rules, lines, places)
-    difference[:] = places.left[: difference.size]
-    places.t[:] = 0.0
-    _expect(rules, lines, places)
-    difference -= places.left[: difference.size]
-
-
-@fused
-def _expect(rules: Rules, lines: Lines, places: Places) -> None:
-    """e0 at these places, into `left`."""
-    places.share[:] = 0.0
-    _add_slopes(rules, lines, places)
+    """e0 at the end less e0 at the start."""
+    for end in range(2):
+        for lane in range(places.t.size):
+            places.t[lane], places.share[lane] = end, 0.0
+        _add_slopes(rules, lines, places)
+        for lane in range(difference.size):
+            difference[lane] = places.left[lane] - (difference[lane] if end else 0.0)
 
 
 @fused
@@ -193,7 +207,7 @@ def _add_slopes(rules: Rules, lines: Lines, places: Places) -> None:
 @fused
 def _early(pieces: Array, lines: Lines, group: int, places: Places) -> None:
     """ax of one of the first two groups, and its slope in m0."""
-    for lane in range(LANES):
+    for lane in range(places.t.size):
         t = places.t[lane]
         places.ax[group, lane], places.bend[group, lane] = by_infant_rate(
             pieces,
@@ -221,7 +235,7 @@ def _down(
     """From birth on. A death takes l dq/dm for each year, dq/dm = per^2 / n with q = m per; where
     more would die than enter, all of them die, 1 / m years after they do."""
     n, per_year = rules.widths, rules.per_year
-    for lane in range(LANES):
+    for lane in range(alive.size):
         alive[lane] = 1.0
     for x in range(ax.shape[0] - 1):
         for lane in range(LANES):
@@ -240,7 +254,7 @@ def _close(
     start: Array, step: Array, t: Array, share: Array, alive: Array, left: Array, mean: Array
 ) -> None:
     """The open group: 1 / m years are left, nobody knows how many where nobody died."""
-    for lane in range(LANES):
+    for lane in range(left.size):
         m = start[lane] + t[lane] * step[lane]
         left[lane] = np.nan if m == 0 else 1 / m
         mean[lane] -= share[lane] * alive[lane] * left[lane] * left[lane]
@@ -254,8 +268,8 @@ def _up(
     all die, e0 falls by l / m^2, for they live 1 / m years."""
     n = rules.widths
     for x in range(qx.shape[0] - 2, -1, -1):
-        if x < 2:
-            ahead[x] = left
+        for lane in range(left.size if x < 2 else 0):
+            ahead[x, lane] = left[lane]
         for lane in range(LANES):
             taken = n[x] if qx[x, lane] >= 1 else after[x, lane] + left[lane]
             mean[x, lane] -= drop[x, lane] * taken
@@ -267,7 +281,7 @@ def _up(
 def _add_bend(lines: Lines, group: int, places: Places) -> None:
     """The part of m0 that goes by way of ax: a year more is lived by l q, and moves q by m^2 of
     what m itself does; none where ax is at its bound."""
-    for lane in range(LANES):
+    for lane in range(places.t.size):
         m = lines.mx[group, lane] + places.t[lane] * lines.mx_step[group, lane]
         q, before = places.qx[group, lane], 0.0 if group == 0 else places.qx[0, lane]
         taken = places.after[group, lane] + places.ahead[group, lane]
