@@ -39,7 +39,7 @@ def open_rates(mx: Array, grid: AgeGrid) -> Array:
     use = np.array(grid.starts[:-1]) >= FROM
     if use.sum() < FEWEST:
         return np.full(mx.shape[:-1], np.nan)
-    with np.errstate(divide="ignore", invalid="ignore"):
+    with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         logs = np.log(mx[..., :-1][..., use])
         before = grid.mids[:-1][use] - grid.open_age
         around = before - before.mean()
