@@ -37,7 +37,12 @@ def recoded(cells: Cells, said: Successions) -> Recoded:
         gone.add(key)
         if _summed_anew(key, cells):
             continue
-        for share in one.shares_of(key):
+        shares = one.shares_of(key)
+        if one.shares and not shares:
+            raise _unshared(key)
+        for share in shares:
+            if key.measure == COUNTED and not share.whole:
+                continue  # they go along whole with the deaths
             new = replace(key, area=share.becomes)
             parts[new][key.area] = _part(cell, share)
             if key.measure == DEATHS and not share.whole:
@@ -63,6 +68,17 @@ def _part(cell: Vector, share: Share) -> Vector:
     at = np.searchsorted(share.grid.starts, cell.grid.starts, side="right") - 1
     values = cell.values * np.array(share.values)[at]
     return replace(cell, values=values, estimated=True)
+
+
+def _unshared(key: Key) -> Refused:
+    return Refused(
+        "{area} is shared out, but no share is stated for its {measure} ({sex}, {period}). Add the "
+        "share in the table of areas.",
+        area=key.area,
+        measure=key.measure,
+        sex=key.sex,
+        period=key.period,
+    )
 
 
 def _summed_anew(key: Key, cells: Cells) -> bool:

@@ -1,6 +1,7 @@
 """Checks of the counts that are moved to other codes: none is lost, none stands twice."""
 
 from collections.abc import Iterable, Iterator
+from dataclasses import replace
 
 from engine.ages import AgeGrid
 from server.intake.checks.check import Check
@@ -39,7 +40,7 @@ def _part_missing(said: Said) -> Iterator[Fault]:
             becomes=becomes,
             has=has,
             lacks=lacks,
-            measure="deaths" if measure == "deaths" else "population",
+            measure=_WORDS[measure],
             years=_years(periods),
         )
 
@@ -106,6 +107,31 @@ def _too_fine(said: Said) -> Iterator[Fault]:
                 )
 
 
+def _unshared(said: Said) -> Iterator[Fault]:
+    """Counts of a code that is shared out for which no share is stated."""
+    held, meant = _held(said), said.meant
+    found: dict[tuple[str, str, str], set[str]] = {}
+    for key in held:
+        one = meant.find(key.area, key.period)
+        sexes = [replace(key, sex=sex) for sex in ("f", "m")]
+        summed = key.sex == "p" and all(sex in held for sex in sexes)
+        if one and one.shares and not summed and not one.shares_of(key):
+            found.setdefault((key.area, key.measure, key.sex), set()).add(key.period)
+    for (code, measure, sex), periods in sorted(found.items()):
+        values = {"code": code, "measure": _WORDS[measure], "sex": sex, "years": _years(periods)}
+        yield said.fault(said.row_of(code), "share", **values)
+
+
+_WORDS = {
+    "deaths": "deaths",
+    "counted_deaths": "deaths",
+    "person_years": "population",
+    "births": "births",
+    "stillbirths": "stillbirths",
+    "neonatal_deaths": "deaths before 28 days",
+}
+
+
 def _new_series(said: Said) -> Iterator[Fault]:
     for one in said.meant.of:
         if not one.shares:
@@ -161,6 +187,16 @@ CHECKS: tuple[Check[Said], ...] = (
         expected="shares for age groups that the counts have",
         remedy="State shares for the age groups of the counts, or one for all ages.",
         find=_too_fine,
+    ),
+    Check(
+        key="counts_without_share",
+        severity="error",
+        meaning="A code is shared out, and for some of its counts no share is stated.",
+        found="{measure} of {code}, {sex}, for {years}, and no share of them",
+        expected="a share of every count that the code has",
+        remedy="Add rows for these counts, or leave counts and sex empty where one share is of "
+        "all.",
+        find=_unshared,
     ),
     Check(
         key="new_series_begin",

@@ -6,11 +6,14 @@ import numpy as np
 import pytest
 from sqlalchemy.orm import Session
 
+from engine.ages import AgeGrid
 from server.accounts.viewer import LOCAL
 from server.actions.commit_upload import commit_upload
 from server.actions.rebuild_editions import rebuild_editions
+from server.actions.recoding import recoded
 from server.intake.mapping import Mapping
 from server.intake.report import Report
+from server.intake.successions import FIRST, LAST, Share, Succession, Successions
 from server.store import areas, breaks, editions, schedules
 from server.store.errors import Refused
 from server.store.records import Break, Edition, Key, Selection, Taking, Upload, Vector
@@ -279,3 +282,23 @@ def test_a_new_population_alone_leaves_the_deaths_and_their_status(session: Sess
     assert first_edition is not None
     assert (first_edition.basis.vintage, second.basis.vintage) == ("", named.vintage)
     assert rebuilt(session)
+
+
+def test_counts_without_a_share_are_refused_and_none_is_lost(session: Session) -> None:
+    first(session, COLUMNS)
+    late = checked_upload(session, areas="code,becomes,share,counts\nnorth,moor,1,deaths\n")
+    found = {problem.key for problem in Report.from_json(late.report).errors}
+    assert found == {"counts_without_share"}
+    said = Successions(
+        (
+            Succession(
+                "north",
+                FIRST,
+                LAST,
+                ("moor",),
+                (Share("moor", "deaths", "", AgeGrid((0,)), (1.0,)),),
+            ),
+        )
+    )
+    with pytest.raises(Refused, match="no share is stated for its person_years"):
+        recoded(held(session, 1, "north"), said)

@@ -81,6 +81,7 @@ LIST_CASES = (
         "shares_finer_than_counts",
         areas("north,coast,,,1,,,0-9", "north,coast,,,1,,,10+"),
     ),
+    _case("counts_without_share", areas("north,coast,,,1,deaths")),
     _case("new_series_begin", areas("north,coast,2015", "north,bay,2015")),
     _case("break_of_unknown_area", breaks("nort,2012,coding")),
     _case("break_outside_years", breaks(",2010,definition")),
