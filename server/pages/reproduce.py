@@ -195,13 +195,17 @@ def _figures(session: Session, collection: str, found: tuple[Found, ...]) -> Tab
             Column("year", _("year")),
             Column("indicator", _("indicator")),
             Column("printed", _("printed")),
-            Column("then", _("its edition, today"), decimals=2),
-            Column("now", _("the edition that stands"), decimals=2),
+            Column("then", _("then"), decimals=2),
+            Column("now", _("now"), decimals=2),
             Column("verdict", _("verdict")),
             Column("why", _("why")),
         ),
         tuple(_row(one, collection, newest) for one in found),
-        _("Matched: equal once rounded as it was printed."),
+        _(
+            "Matched: equal once rounded as it was printed. Then: what its edition and settings"
+            " give today; now: what the edition that stands gives. With few decimals, to be equal"
+            " elsewhere may be chance."
+        ),
     )
 
 

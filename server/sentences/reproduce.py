@@ -42,7 +42,11 @@ def answer(name: str, counts: Mapping[str, int]) -> Sentence:
             ),
             name=name,
         )
-    parts = [n_("one is matched", "{count} are matched", matched, count=whole(matched))]
+    parts = [
+        n_("one is matched", "{count} are matched", matched, count=whole(matched))
+        if matched
+        else _("none is matched")
+    ]
     if explained:
         parts.append(n_("one is explained", "{count} are explained", explained))
     if astray:
@@ -93,7 +97,9 @@ def why(
         return f"{text}: {'; '.join(parts)}" if parts else text
     if key == "elsewhere":
         return _(
-            "it is that of edition {edition} under {settings}", edition=edition, settings=settings
+            "it equals that of edition {edition} under {settings}",
+            edition=edition,
+            settings=settings,
         )
     if key == "cut":
         return _("edition {edition} with its last digits cut off", edition=edition)

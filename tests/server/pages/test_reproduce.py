@@ -122,8 +122,8 @@ def test_a_printed_table_is_told_line_by_line(isle: Session) -> None:
         "no number",
     ]
     whys = [str(row.cells[-1]) for row in page.table("figures").rows]
-    assert whys[1] == "it is that of edition 1 under almanac-1"
-    assert whys[2] == "it is that of edition 2 under almanac-1-constant-rate"
+    assert whys[1] == "it equals that of edition 1 under almanac-1"
+    assert whys[2] == "it equals that of edition 2 under almanac-1-constant-rate"
     assert "engine or rounding" in whys[4]
     unknown = page.table("unknown")
     assert [row.cells[-1] for row in unknown.rows] == [
