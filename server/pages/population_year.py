@@ -222,6 +222,12 @@ def _cautions(found: Findings, moved_before: basis.Told) -> tuple[Caution, ...]:
             basis.estimated(
                 [names.population(found.of.sex, found.name)] if found.loaded.estimated else []
             ),
+            breaks.cut_off(
+                found.holdings.cut_off(found.of, found.settings.years)
+                if found.settings.years == 1
+                else (),
+                found.period,
+            ),
             breaks.mixed(
                 found.holdings.mixed(found.of, found.settings.years),
                 names.population(found.of.sex, found.name),

@@ -92,11 +92,19 @@ class Holdings:
     def previous(self, wanted: PopulationYear, years: int = 1) -> PopulationYear | None:
         """The same area and sex a year before, or as many as are pooled, where the edition holds
         it and no break lies between."""
+        before = self._before(wanted, years)
+        return None if self.cut_off(wanted, years) else before
+
+    def cut_off(self, wanted: PopulationYear, years: int = 1) -> tuple[Break, ...]:
+        """The breaks that part it from the year before, where the edition holds that."""
+        before = self._before(wanted, years)
+        if before is None:
+            return ()
+        return self.parted(span(before.period, years)[0], wanted.period, wanted.area)
+
+    def _before(self, wanted: PopulationYear, years: int) -> PopulationYear | None:
         before = replace(wanted, period=f"{int(wanted.period) - years:04}")
-        if not self.all_of(before, years):
-            return None
-        first = span(before.period, years)[0]
-        return None if self.parted(first, wanted.period, wanted.area) else before
+        return before if self.all_of(before, years) else None
 
     def mixed(self, one: PopulationYear, years: int) -> tuple[Break, ...]:
         """The breaks on both sides of which the years added up lie."""

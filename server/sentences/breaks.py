@@ -152,3 +152,15 @@ def note_of_ratios(several: Sequence[Break]) -> str:
         "A comparability ratio is the deaths counted after a change of coding over those counted"
         " before it. It is stated here and not applied to any figure."
     )
+
+
+def cut_off(several: Sequence[Break], year: str) -> Told:
+    """Beside a year that a break parts from the year before."""
+    if not several:
+        return None
+    said = "; ".join(dict.fromkeys(map(told, several)))
+    return _("A break before"), _(
+        "{year} is the first year of another kind: {said}. It is not set against the year before.",
+        year=year,
+        said=said,
+    )

@@ -148,6 +148,8 @@ def test_years_added_up_across_a_break_are_called_a_mixture(isle: Session) -> No
     assert "A break within" in told("2007", "almanac-1-3-years")
     assert "A break within" not in told("2005", "almanac-1-3-years")
     assert "A break within" not in told("2007", "almanac-1")
+    assert "A break before" not in told("2007", "almanac-1")
+    assert "2006, new population base (census)" in told("2006", "almanac-1")["A break before"]
     said = drawn(isle, 2, settings="almanac-1-3-years").cautions
     assert any("lie on both sides of a break" in caution.text for caution in said)
 
