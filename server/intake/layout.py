@@ -19,6 +19,8 @@ from server.intake.mapping import Form
 from server.intake.problems import Fault
 
 MOST_ABOVE, MOST_HEADINGS = 1_000, 10  # rows
+MOST_ROWS = 3_000_000
+MOST_LINES = 2 * MOST_ROWS  # with those inside quotation marks, and blank ones
 
 
 @dataclass(frozen=True, slots=True)
@@ -68,6 +70,9 @@ def layout(content: bytes, name: str, form: Form | None = None) -> Layout:
 
 def laid_out(source: Opened, name: str, form: Form) -> Layout:
     """A table that is opened already, cut."""
+    if (count := source.body.count(b"\n")) > MOST_LINES:
+        values = {"count": count, "most": MOST_ROWS}
+        source = replace(source, body=b"", found=(Found("too_many_rows", Fault(values=values)),))
     body, sign, form, sure = _delimited(source, form)
     above = min(max(form.heading, 1), MOST_ABOVE) - 1
     deep = min(max(form.heading_rows, 1), MOST_HEADINGS)

@@ -7,12 +7,11 @@ from engine.panel import SEXES
 from server.intake.areas import is_code
 from server.intake.cells import whole_code
 from server.intake.checks.check import Check
-from server.intake.checks.files import MOST_ROWS as MOST_COUNTS
 from server.intake.forms.across import spread, wrong
 from server.intake.forms.found import faults
 from server.intake.forms.units import multiplier, suggested
 from server.intake.labels import NOT_STATED, read_year
-from server.intake.layout import Layout
+from server.intake.layout import MOST_ROWS, Layout
 from server.intake.mapping import (
     COLUMNS,
     JANUARY,
@@ -105,8 +104,8 @@ def _bad_across(mapped: Mapped) -> Iterator[Fault]:
 
 def _too_many_counts(mapped: Mapped) -> Iterator[Fault]:
     groups = len(set(mapped.mapping.form.across_columns)) or 1
-    if mapped.file.row_count * groups > MOST_COUNTS:
-        yield Fault(values={"count": mapped.file.row_count * groups, "most": MOST_COUNTS})
+    if mapped.file.row_count * groups > MOST_ROWS:
+        yield Fault(values={"count": mapped.file.row_count * groups, "most": MOST_ROWS})
 
 
 def _numbers_at(mapped: Mapped) -> Iterator[tuple[str, str]]:

@@ -9,10 +9,8 @@ from server.intake.checks import forms
 from server.intake.checks.check import LISTED, Check
 from server.intake.forms.found import faults
 from server.intake.forms.sheet_rows import MOST_COLUMNS
-from server.intake.layout import Layout
+from server.intake.layout import MOST_ROWS, Layout
 from server.intake.problems import Fault, Problem
-
-MOST_ROWS = 3_000_000
 
 
 def _empty(file: Layout) -> Iterator[Fault]:
@@ -48,6 +46,7 @@ def _too_many_columns(file: Layout) -> Iterator[Fault]:
 
 
 def _too_many_rows(file: Layout) -> Iterator[Fault]:
+    yield from faults(file.found, "too_many_rows")
     if file.row_count > MOST_ROWS:
         yield Fault(values={"count": file.row_count, "most": MOST_ROWS})
 

@@ -33,7 +33,7 @@ _LATER = rb"[\x80-\xbf]"
 _UTF_8 = re.compile(
     rb"[\xc2-\xdf]" + _LATER + rb"|[\xe0-\xef]" + _LATER + rb"{2}|[\xf0-\xf4]" + _LATER + rb"{3}"
 )
-_HIGH = re.compile(rb"[\x80-\xff]")
+_HIGH = bytes(range(0x80, 0x100))
 _ONLY_WINDOWS = re.compile(rb"[\x80-\x9f]")  # letters and marks there, nothing in Latin-1
 
 
@@ -97,7 +97,7 @@ def _single(content: bytes) -> Decoded:
 def _mixed(content: bytes) -> bool:
     """Mostly UTF-8, with bytes among it that are not: no single encoding reads it."""
     rest, letters = _UTF_8.subn(b"", content)
-    return letters > len(_HIGH.findall(rest))
+    return letters > len(rest) - len(rest.translate(None, _HIGH))
 
 
 def _guessed(content: bytes, guess: str, first: int) -> Decoded:

@@ -10,11 +10,11 @@ from dataclasses import dataclass
 from xml.parsers import expat
 
 from server.intake.forms.found import Found
-from server.intake.forms.unpacking import MOST_UNPACKED
 from server.intake.problems import Fault
 
 ZIP = b"PK\x03\x04"
 MOST_PARTS = 5_000
+MOST_XML = 600_000_000  # bytes of all parts; they are read piece by piece, and never kept
 MOST_RATIO, SMALL = 250, 8_000_000  # a part is packed no tighter, unless it is small
 STEP = 1 << 16
 KINDS = (zipfile.ZIP_STORED, zipfile.ZIP_DEFLATED)
@@ -34,6 +34,12 @@ class Package:
     def has(self, pattern: str) -> int:
         """How many parts have such a name."""
         return sum(1 for name in self.parts.namelist() if re.search(pattern, name))
+
+    def size(self, part: str) -> int:
+        """Bytes of a part. Raises: Broken where there is none."""
+        if part not in self.parts.namelist():
+            raise Broken(part)
+        return self.parts.getinfo(part).file_size
 
     def start(self, part: str, size: int) -> bytes:
         """The first bytes of a part. Raises: Broken."""
@@ -99,10 +105,9 @@ def package(content: bytes) -> Package | Found:
         return Found("broken_workbook", Fault(values={"part": "the whole"}))
     listed = parts.infolist()
     size = sum(part.file_size for part in listed)
-    if size > MOST_UNPACKED:
-        return Found(
-            "package_too_large", Fault(values={"packed": len(content), "most": MOST_UNPACKED})
-        )
+    if size > MOST_XML:
+        values = {"packed": len(content), "most": MOST_XML}
+        return Found("package_too_large", Fault(values=values))
     for part in listed[:MOST_PARTS]:
         if part.file_size > SMALL and part.file_size > MOST_RATIO * max(part.compress_size, 1):
             values = {"packed": part.compress_size, "size": part.file_size}

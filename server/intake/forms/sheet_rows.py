@@ -13,6 +13,7 @@ LAST_ROW, LAST_COLUMN = 1_048_576, 16_384  # of any sheet
 MOST_COLUMNS = 2_000  # of a table
 MOST_MERGED = 20_000
 LISTED = 100  # cells that are named one by one
+MOST_PIECES = 1_000  # of a text, each of some thousand signs
 MARKED = 2_000  # different texts that may be numbers
 _MAY_BE_NUMBER = re.compile(r"[+-]?\d[\d.,' \u00a0\u2009\u202f\u2019]*")
 _REFERENCE = re.compile(r"([A-Z]{1,3})(\d{1,7})")
@@ -169,6 +170,8 @@ class _Reader:
     def text(self, piece: str) -> None:
         if self._listens and not self._inside:
             self._value.append(piece)
+            if len(self._value) > MOST_PIECES:
+                raise TooLarge
 
     def _begin_row(self, given: dict[str, str]) -> None:
         before, number = self._row, given.get("r")

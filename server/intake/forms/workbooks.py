@@ -202,6 +202,8 @@ def _texts(book: Package, part: str) -> list[str]:
             pieces.append(piece)
 
     if part:
+        if book.size(part) > MOST_UNPACKED:
+            raise TooLarge
         book.parse(part, begin, end, text)
     return texts
 

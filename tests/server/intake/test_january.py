@@ -48,7 +48,7 @@ def test_a_year_that_is_lacking_ends_two() -> None:
 
 
 def test_series_of_areas_and_sexes_do_not_touch() -> None:
-    """The last January of women is not averaged with the first of men, nor one area's with another's."""
+    """The last January of women is not averaged with the first of men."""
     table = without(TABLE, where(TABLE, area="north", sex="f", year=2014))
     found = people(parse([january(table)]))
     assert ("north", "f", "2013") not in found
