@@ -21,7 +21,7 @@ class Report:
     periods: tuple[str, ...]
     measures: tuple[str, ...]
     provisional: tuple[str, ...]  # periods that are provisional somewhere
-    grids: tuple[tuple[str, ...], ...]  # labels of the age groups, for each grid of deaths
+    grids: tuple[tuple[str, ...], ...]  # labels of the age groups, for each grid of deaths, or of a population alone
     whole: str  # code of the area that is summed from the others; empty where none is
     persons: bool  # persons are summed from women and men
     delivered: tuple[str, ...]  # codes of areas kept as delivered
@@ -35,8 +35,9 @@ class Report:
         keys = parsed.cells.keys()
         sexes = {(key.area, key.period, key.measure, key.sex) for key in keys}
         delivered = tuple(area.code for area in parsed.areas if area.delivered)
+        by_age = "deaths" if any(key.measure == "deaths" for key in keys) else "person_years"
         grids = dict.fromkeys(
-            cell.grid for key, cell in parsed.cells.items() if key.measure == "deaths"
+            cell.grid for key, cell in parsed.cells.items() if key.measure == by_age
         )
         provisional = {k.period for k, cell in parsed.cells.items() if cell.status != "final"}
         return cls(

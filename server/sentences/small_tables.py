@@ -2,11 +2,11 @@
 
 from collections.abc import Sequence
 
-from server.sentences import names
 from server.sentences.breaks import kind
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.reading import Options
 from server.sentences.text import _
+from server.sentences.uploads import years
 
 
 def field(role: str, name: str, line: int) -> str:
@@ -96,7 +96,7 @@ def facts(
     if rebased:
         said = _(
             "{years}: the deaths that stand stay, with their status",
-            years=names.listed(list(rebased), most=12),
+            years=years(rebased),
         )
         found.append((_("New population for years already held"), said))
     return tuple(found)
