@@ -18,6 +18,7 @@ from server.intake.checks import (
     lists,
     moved_counts,
     old_ages,
+    open_ages,
     plausibility,
     repeats,
     series,
@@ -70,7 +71,7 @@ CHAPTERS = (
         "ages",
         "Sexes and ages",
         "Are women and men, and the ages, as they are in any population?",
-        (sexes, old_ages, stated_ages),
+        (sexes, old_ages, open_ages, stated_ages),
     ),
     Chapter(
         "completeness",
@@ -104,6 +105,7 @@ OF_LEDGER = (
     *standing.CHECKS,
     *sexes.CHECKS,
     *old_ages.CHECKS,
+    *open_ages.CHECKS,
     *stated_ages.CHECKS,
     *completeness.CHECKS,
 )

@@ -1,15 +1,11 @@
 """Checks of death rates by age: the first years, and the ages at which errors of age show."""
 
 from collections.abc import Iterator
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
-from engine.ageing import within
 from engine.ages import Array
-from engine.open_age import SPAN, YOUNGEST, implied_population, judged_age
-from engine.panel import Panel
-from engine.settings import find
 from server.intake.cells import Flags, Ints
 from server.intake.checks.check import Check, several
 from server.intake.checks.sexes import FEW, SURE, UNEVEN
@@ -23,18 +19,15 @@ SPIKE, ROUND_FROM = 0.05, 40
 MIDDLE, OLDEST = (60, 80), 85
 CROSSES = (1.10, 0.95)  # higher than the other in the middle ages, lower at the oldest
 SHARE = (0.50, 0.96)  # of infants among those who die under five
-IMPLIED, ALONE = (0.8, 1.25), (0.65, 1.25)
-LEAST_GROUPS = 5  # between 50 and 84, from which the rise of death rates is read
-SETTINGS = replace(find("almanac-2"), level=0.999)  # of the limits of the implied population
 
 
-def _pooled(ledger: Ledger) -> Iterator[Rated]:
+def pooled(ledger: Ledger) -> Iterator[Rated]:
     for one in rated(ledger, parts=True):
         yield one.pooled()
 
 
 def _falls(ledger: Ledger) -> Iterator[Fault]:
-    for one in _pooled(ledger):
+    for one in pooled(ledger):
         with np.errstate(all="ignore"):
             step = np.diff(np.log(one.rates), axis=-1)
             spread = np.sqrt(1 / one.deaths[:, 1:] + 1 / one.deaths[:, :-1])
@@ -59,7 +52,7 @@ def _two_rates(one: Rated, line: int, age: int, other: int) -> dict[str, Value]:
 
 
 def _spikes(ledger: Ledger) -> Iterator[Fault]:
-    for one in _pooled(ledger):
+    for one in pooled(ledger):
         starts = one.starts
         single = (starts[1:-1] - starts[:-2] == 1) & (starts[2:] - starts[1:-1] == 1)
         single[-1:] = False  # beside the open group no year is compared
@@ -120,25 +113,25 @@ def _crossed(one: Rated, these: Ints, those: Ints) -> Crossing:
 
 
 def _sexes_cross(ledger: Ledger) -> Iterator[Fault]:
-    for one in _pooled(ledger):
+    for one in pooled(ledger):
         women, men = one.couples()
         yield from _crossings(ledger, one, men, _crossed(one, men, women))
 
 
 def _areas_cross(ledger: Ledger) -> Iterator[Fault]:
     """Each area against all others of its sex."""
-    for one in _pooled(ledger):
+    for one in pooled(ledger):
         for sex in "fmp":
             lines = one.of(sex)
             if len(lines) < 2:
                 continue
-            rest = _others(one, lines)
+            rest = others(one, lines)
             both = np.arange(len(lines))
             found = _crossed(rest, both, both + len(lines))
             yield from _crossings(ledger, one, lines, found)
 
 
-def _others(one: Rated, lines: Ints) -> Rated:
+def others(one: Rated, lines: Ints) -> Rated:
     """These lines, and then for each the sum of the others."""
     deaths, people = one.deaths[lines], one.people[lines]
     return Rated(
@@ -166,7 +159,7 @@ def _crossings(ledger: Ledger, one: Rated, lines: Ints, found: Crossing) -> Iter
 
 
 def _infant_share(ledger: Ledger) -> Iterator[Fault]:
-    for one in _pooled(ledger):
+    for one in pooled(ledger):
         if not (one.grid.has(1) and one.grid.has(5)):
             continue
         infants = one.deaths[:, 0]
@@ -181,55 +174,6 @@ def _infant_share(ledger: Ledger) -> Iterator[Fault]:
             return one.fault(ledger, line, 0, {"share": round(100 * float(share[line]), 1)})
 
         yield from several(np.flatnonzero(off & (under >= FEW)), fault)
-
-
-def _open_age(ledger: Ledger) -> Iterator[Fault]:
-    """People at the open age that the deaths there imply, against the other areas' of the sex; one
-    area alone against what a law that rises evenly gives."""
-    for one in _pooled(ledger):
-        if len(one.starts[within(one.grid, SPAN)]) < LEAST_GROUPS:
-            continue
-        if judged_age(one.grid) < YOUNGEST:
-            continue
-        old = one.starts >= judged_age(one.grid)
-        enough = one.deaths[:, old].sum(axis=-1) >= FEW
-        for sex in "fmp":
-            lines = one.of(sex)
-            if enough[lines].any():
-                times, off = _implied(one, lines, sex)
-                yield from _open_ages(ledger, one, lines, times, off & enough[lines])
-
-
-def _open_ages(
-    ledger: Ledger, one: Rated, lines: Ints, times: Array, off: Flags
-) -> Iterator[Fault]:
-    age, (low, high) = judged_age(one.grid), IMPLIED if len(lines) > 1 else ALONE
-
-    def fault(at: int) -> Fault:
-        values: dict[str, Value] = {
-            "age": f"{age}+",
-            "times": round(float(times[at]), 2),
-            "low": low,
-            "high": high,
-        }
-        return one.fault(ledger, int(lines[at]), one.grid.position(age), values)
-
-    yield from several(np.flatnonzero(off), fault)
-
-
-def _implied(one: Rated, lines: Ints, sex: str) -> tuple[Array, Flags]:
-    """The population implied over the one handed in, and where it is off beyond chance."""
-    rest, many = _others(one, lines), len(lines)
-    own = Panel.of(one.grid, rest.deaths[:many], rest.people[:many], sex=sex)
-    if many == 1:
-        alone = implied_population(own, own, SETTINGS).observed
-        return alone, np.asarray((alone < ALONE[0]) | (alone > ALONE[1]))
-    whole = Panel.of(one.grid, rest.deaths[many:], rest.people[many:], sex=sex)
-    nobody = own.over(lambda counts: counts * 0.0)
-    ratio = implied_population(own, whole, SETTINGS, shared=nobody).ratio
-    with np.errstate(invalid="ignore"):
-        off = (ratio.high < IMPLIED[0]) | (ratio.low > IMPLIED[1])
-    return ratio.value, np.asarray(off)
 
 
 MISSTATED = (
@@ -305,21 +249,5 @@ CHECKS: tuple[Check[Ledger], ...] = (
         remedy=MISSTATED + "at 85 where ages are in doubt.",
         source="Coale & Kisker (1986), Population Studies 40, 389-401.",
         find=_areas_cross,
-    ),
-    Check(
-        key="open_age_population",
-        severity="warning",
-        meaning="The deaths at the open age imply a population there that is more than a fifth "
-        "off the one handed in, set against the other areas; for an area alone, that its death "
-        "rate is less than 65 or more than 125 % of what the rise from 50 to 84 leads to.",
-        why="Few people make up the open age, and an estimate carried forward from an old census "
-        "soon has too many or too few of them.",
-        found="a population implied that is {times} times the one at {age} in {area}, {sex} {year}",
-        expected="{low} to {high} times",
-        remedy="Ask how the population at the highest ages was estimated; a lower open age is "
-        "safer.",
-        source="Preston, Elo & Stewart (1999), Population Studies 53, 165-177; the ratio of two "
-        "populations is Ebbline's own.",
-        find=_open_age,
     ),
 )

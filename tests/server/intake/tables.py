@@ -38,19 +38,19 @@ def rows(
             "year": year,
             "sex": sex,
             "age": age,
-            "deaths": times * (deaths + year - 2010 + 5 * (sex == "m")) + _own(area),
-            "population": times * (people + year - 2010 + 5 * (sex == "m")) + _own(area),
+            "deaths": times * (deaths + year - 2010 + 5 * (sex == "m")) + _own(area, number),
+            "population": times * (people + year - 2010 + 5 * (sex == "m")) + _own(area, number),
         }
-        for area in areas
+        for number, area in enumerate(areas)
         for year in years
         for sex in sexes
         for age, (deaths, people) in AGES.items()
     ]
 
 
-def _own(area: str) -> int:
+def _own(area: str, number: int) -> int:
     """What sets the counts of an area apart from those of others."""
-    return 10 * (area in ("south", "isle")) + 20 * (area not in ("north", "south", "isle"))
+    return {"north": 0, "south": 10, "isle": 10}.get(area, 20 + 10 * number)
 
 
 def persons(table: list[Row]) -> list[Row]:
