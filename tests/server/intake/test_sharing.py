@@ -339,3 +339,26 @@ def test_totals_are_compared_with_all_their_parts_known_or_not() -> None:
     assert found(off) == ["20 at all ages in north, not stated 2001"]
     wide = [row | {"age": "0-84"} if row["sex"] == UNKNOWN else row for row in table]
     assert found(wide) == []  # of no one age: all ages are compared
+
+
+def test_a_code_that_is_called_unknown_is_of_no_area() -> None:
+    table = [row | {"name": str(row["area"]).title()} for row in NORTH]
+    table += [row | {"area": "99", "name": "Not stated"} for row in rows(UNKNOWN, "f", [5, 0, 0])]
+    parsed = read(table, area_name="name")
+    assert [area.code for area in parsed.areas] == ["north"]
+    assert deaths(parsed, "north", "f") == [15, 20, 70]
+
+
+def test_a_total_that_is_named_as_the_whole_is_a_cross_check() -> None:
+    total = [row | {"area": "All areas"} for row in NORTH]
+    named = {"area": "", "area_name": "area", "whole_name": "All areas"}
+    parsed = read([*NORTH, *total], **named)
+    assert not parsed.problems
+    assert {key.area for key in parsed.cells} == {"north"}
+    off = [total[0] | {"deaths": 12}, *total[1:]]
+    (problem,) = read([*NORTH, *off], **named).problems
+    assert problem.found == "12 in all-areas, f 2001, age 0"
+    assert problem.expected == "10, all parts together"
+    assert [one.key for one in read([*NORTH, *total], area="", area_name="area").errors] == [
+        "total_among_areas"
+    ]

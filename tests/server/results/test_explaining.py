@@ -10,6 +10,7 @@ from numpy.testing import assert_allclose
 from engine import indicators
 from engine.ages import AgeGrid
 from engine.chain import run
+from engine.decomposition import contribution_limits
 from engine.indicators import find
 from engine.panel import Panel
 from engine.settings import find as named
@@ -251,3 +252,15 @@ def test_without_all_years_of_one_people_there_is_no_path(
     isle: Session, this: str, that: str, settings: str
 ) -> None:
     assert compared(isle, this, that, settings).explained.path is None
+
+
+def test_deaths_counted_in_both_cancel_as_they_were_counted() -> None:
+    """A part with deaths shared out, and the whole of it and a rest: the limits of contributions
+    are those of as many deaths counted."""
+    part = replace(THIS, counted=THIS.deaths / 4)
+    whole = complete(Panel.pooled([part, THAT]))
+    found = explain("e0", {"e0"}, sides(part, whole, part), None, PLAIN).contributions["e0"]
+    limits = contribution_limits(
+        find("e0"), part, whole, PLAIN, shared=THIS.deaths / 4, groups=GROUPS
+    )
+    assert_allclose((found.low, found.high), limits, rtol=1e-12)
