@@ -36,7 +36,7 @@ def close(of: Block, primary: Bools, sticky: Bools, fresh: Bools, threshold: flo
     protect each other where persons are shown.
     """
     done = Closed(primary | sticky)
-    need = primary & ~sticky
+    need = primary & (~sticky | fresh)  # an old number is protected as it was
     few, larger = need[:, 2].copy(), np.nan_to_num(of.values[:, 1]) > np.nan_to_num(of.values[:, 0])
     room = np.where(of.held, np.maximum(of.values - np.minimum(of.values, 1.0), 0.0), 0.0)
     for mode in MODES:
