@@ -42,14 +42,22 @@ class Told:
     sound: int = 0  # of the rows, those that can be read
 
 
-def told(
-    handed: Sequence[File],
-    areas: Iterable[Area],
-    held: Mapping[Key, AgeGrid],
-    standing: Standing | None,
-) -> Told:
-    """Read the tables; `areas` and `held` are what the files of counts hold. Without `standing` it
-    is not asked whether codes and years are known."""
+@dataclass(frozen=True, slots=True)
+class Tables:
+    """The small tables as far as they can be read."""
+
+    of: tuple[SmallTable, ...]
+    problems: tuple[Problem, ...]
+    unread: int
+
+    @property
+    def old_codes(self) -> frozenset[str]:
+        """Codes of which it is said what becomes of them."""
+        lines = [line for table in self.of if table.role == "areas" for line in table.lines]
+        return frozenset(line["code"] for line in lines)
+
+
+def tables_of(handed: Sequence[File]) -> Tables:
     tables, problems, unread = [], [], 0
     for file in handed:
         laid = layout(file.content, file.name, file.mapping.form)
@@ -61,9 +69,21 @@ def told(
             found += lists.problems_of(table)
             tables.append(table)
         problems += found
+    return Tables(tuple(tables), tuple(problems), unread)
+
+
+def told(
+    tables: Tables,
+    areas: Iterable[Area],
+    held: Mapping[Key, AgeGrid],
+    standing: Standing | None,
+) -> Told:
+    """What the tables say; `areas` and `held` are what the files of counts hold. Without `standing`
+    it is not asked whether codes and years are known."""
+    problems = [*tables.problems]
     listed = _Listed({area.code: area for area in areas}, held, standing)
     said, breaks, sound = NOTHING, [], 0
-    for table in tables:
+    for table in tables.of:
         if table.role == "areas":
             rows = successions.read_lines(table)
             problems += listed.of_areas(table, rows)
@@ -78,7 +98,7 @@ def told(
         said,
         (*breaks, *_unless_said(said.breaks, breaks)),
         tuple(problems),
-        unread + sum(table.row_count for table in tables),
+        tables.unread + sum(table.row_count for table in tables.of),
         sound,
     )
 

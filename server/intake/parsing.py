@@ -8,7 +8,7 @@ from itertools import repeat
 import numpy as np
 
 from engine.panel import SEXES
-from server.intake.areas_over_time import told
+from server.intake.areas_over_time import tables_of, told
 from server.intake.cells import (
     AREA_UNSTATED,
     TOTAL,
@@ -98,8 +98,10 @@ def parse(handed: Sequence[Handed], standing: Standing | None = NOTHING_STANDS) 
     roles, known = [file.role for file in handed], ", ".join(EVERY_ROLE)
     if len(set(roles)) != len(roles) or not set(roles) <= set(EVERY_ROLE):
         raise ValueError(f"an upload has one file of each role of {known}; got {roles}")
-    counts = _counts([file for file in handed if file.role not in LISTS], standing)
-    lists = [file for file in handed if file.role in LISTS]
+    lists = tables_of([file for file in handed if file.role in LISTS])
+    # codes of which it is said what becomes of them are not missed
+    left = standing.without(lists.old_codes) if standing else None
+    counts = _counts([file for file in handed if file.role not in LISTS], left)
     grids = {key: cell.grid for key, cell in counts.cells.items()}
     said = told(lists, counts.areas, grids, standing)
     return replace(

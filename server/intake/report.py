@@ -21,7 +21,7 @@ class Report:
     periods: tuple[str, ...]
     measures: tuple[str, ...]
     provisional: tuple[str, ...]  # periods that are provisional somewhere
-    grids: tuple[tuple[str, ...], ...]  # labels of the age groups, for each grid of deaths, or of a population alone
+    grids: tuple[tuple[str, ...], ...]  # labels of each grid of deaths, or of people alone
     whole: str  # code of the area that is summed from the others; empty where none is
     persons: bool  # persons are summed from women and men
     delivered: tuple[str, ...]  # codes of areas kept as delivered

@@ -1,8 +1,8 @@
 """What the edition that stands holds, as far as checks of an upload must know it."""
 
 from collections import defaultdict
-from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from collections.abc import Collection, Mapping, Sequence
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
@@ -25,6 +25,17 @@ class Standing:
     basis: Basis | None = None
     breaks: tuple[Break, ...] = ()
     cells: Mapping[Key, Vector] = field(default_factory=dict)  # deaths and person-years
+
+    def without(self, codes: Collection[str]) -> "Standing":
+        """The same without some areas and their counts."""
+        if not codes:
+            return self
+        return replace(
+            self,
+            areas=tuple(area for area in self.areas if area.code not in codes),
+            held={key: grid for key, grid in self.held.items() if key.area not in codes},
+            cells={key: cell for key, cell in self.cells.items() if key.area not in codes},
+        )
 
     def holds(self, area: str, sex: str, period: str, measure: str) -> bool:
         return Key(area, sex, period, measure) in self.held

@@ -302,3 +302,22 @@ def test_counts_without_a_share_are_refused_and_none_is_lost(session: Session) -
     )
     with pytest.raises(Refused, match="no share is stated for its person_years"):
         recoded(held(session, 1, "north"), said)
+
+
+@pytest.mark.parametrize(("table", "missed"), [(MERGED, False), ("", True)])
+def test_codes_that_became_others_are_not_missed(
+    session: Session, table: str, missed: bool
+) -> None:
+    others = ("cape", "rock", "reef")
+    content = counts_csv(("north", "south", *others), years=YEARS)
+    made(session, checked_upload(session, content, mapping=WHOLE))
+    later = counts_csv(("main", *others), years=(2004,))
+    lists = {"areas": table} if table else {}
+    upload = checked_upload(session, later, mapping=WHOLE, **lists)  # type: ignore[arg-type]
+    found = {problem.key for problem in Report.from_json(upload.report).problems}
+    assert ("areas_gone" in found) is missed
+    made(session, upload)
+    assert "main" in codes(session, 2)
+    assert ("north" in codes(session, 2)) is missed
+    years = {key.period for key in held(session, 2, "isle")}
+    assert years == (set() if missed else {"2001", "2002", "2003", "2004"})
