@@ -85,3 +85,9 @@ def test_a_whole_with_a_single_part_is_no_copy() -> None:
     apart = told(north + whole, "counts_copied")
     assert apart
     assert {problem.values["other_area"] for problem in apart} == {"isle"}
+
+
+def test_two_areas_of_one_year_with_the_same_numbers_repeat_no_year() -> None:
+    south = [row | {"area": "south"} for row in WOMEN]
+    assert told(WOMEN + south, "year_repeated") == []
+    assert len(told(WOMEN + south, "counts_copied")) == 2  # deaths and population
