@@ -9,7 +9,7 @@ from server.intake.forms.delimiters import BLANKS, NAMES, delimited, without_bla
 from server.intake.forms.found import Found
 from server.intake.forms.headings import joined
 from server.intake.forms.lines import LONGEST_HEADING, Lines, filled, lines, rows_of, taken
-from server.intake.forms.notes import notes
+from server.intake.forms.notes import Notes, notes
 from server.intake.forms.numbers import unknown_marks
 from server.intake.forms.opening import Opened, opened
 from server.intake.forms.sheet_notes import Filled, filled_down, told
@@ -70,9 +70,7 @@ def layout(content: bytes, name: str, form: Form | None = None) -> Layout:
 
 def laid_out(source: Opened, name: str, form: Form) -> Layout:
     """A table that is opened already, cut."""
-    if (count := source.body.count(b"\n")) > MOST_LINES:
-        values = {"count": count, "most": MOST_ROWS}
-        source = replace(source, body=b"", found=(Found("too_many_rows", Fault(values=values)),))
+    source = _bounded(source)
     body, sign, form, sure = _delimited(source, form)
     above = min(max(form.heading, 1), MOST_ABOVE) - 1
     deep = min(max(form.heading_rows, 1), MOST_HEADINGS)
@@ -84,10 +82,7 @@ def laid_out(source: Opened, name: str, form: Form) -> Layout:
     names = joined(heading.rows)
     found = [*source.found, *sheet.found, *_unknown(form), *unknown_marks(form)]
     if below := notes(body, cut, sign, len(names)):
-        values = {"text": below.text}
-        rows = int(np.count_nonzero(cut.fields[below.line :]))
-        fault = Fault(row=first + below.line, last_row=first + below.last, rows=rows, values=values)
-        found.append(Found("notes_left_out", fault))
+        found.append(_left_out(below, cut, first))
         body, cut = body[: cut.starts[below.line]], cut.first(below.line)
     return Layout(
         name=f"{name} › {form.sheet}" if len(source.tabs) > 1 and form.sheet else name,
@@ -106,6 +101,22 @@ def laid_out(source: Opened, name: str, form: Form) -> Layout:
         merged=sheet.ranges,
         found=tuple(found),
     )
+
+
+def _bounded(source: Opened) -> Opened:
+    """Without its text where that has more lines than any table."""
+    count = source.body.count(b"\n")
+    if count <= MOST_LINES:
+        return source
+    fault = Fault(values={"count": count, "most": MOST_ROWS})
+    return replace(source, body=b"", found=(Found("too_many_rows", fault),))
+
+
+def _left_out(below: Notes, cut: Lines, first: int) -> Found:
+    rows = int(np.count_nonzero(cut.fields[below.line :]))
+    row, last = first + below.line, first + below.last
+    fault = Fault(row=row, last_row=last, rows=rows, values={"text": below.text})
+    return Found("notes_left_out", fault)
 
 
 def _filled(source: Opened, body: bytes, first: int) -> Filled:
