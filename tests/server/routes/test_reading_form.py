@@ -7,6 +7,7 @@ import pytest
 from httpx2 import Response
 from starlette.testclient import TestClient
 
+from server.intake.mapping import Mapping
 from tests.server.intake.workbooks import xlsx
 from tests.server.routes.test_uploads import BASIS, NEW, contents
 
@@ -53,7 +54,7 @@ def form_of(page: str) -> dict[str, str]:
 @pytest.fixture
 def place(blank: TestClient) -> str:
     deaths = "\r\n".join(DEATHS).encode("latin-1")
-    answer = received(blank, ("people.txt", PEOPLE), ("deaths.csv", deaths))
+    answer = received(blank, ("table2.txt", PEOPLE), ("deaths.csv", deaths))
     assert answer.status_code == 303, answer.text
     return answer.headers["location"]
 
@@ -146,7 +147,7 @@ def test_what_a_file_holds_can_be_put_right(blank: TestClient, place: str) -> No
     assert blank.post(place, data=sent | exchanged).status_code == 303
     page = blank.get(place).text
     assert "population: deaths.csv" in page
-    assert "deaths: people.txt" in page
+    assert "deaths: table2.txt" in page
     both = blank.post(place, data=form_of(page) | {"deaths.role": "population"})
     assert both.status_code == 409
     assert "2 files were handed in as population" in both.text
@@ -183,6 +184,33 @@ def test_two_files_of_the_same_kind_are_refused_by_name(blank: TestClient) -> No
     answer = received(blank, ("a.csv", deaths), ("b.csv", deaths), code="other")
     assert answer.status_code == 422
     assert "b.csv seems to hold the same as another file: deaths." in answer.text
+
+
+def test_people_of_1_january_are_averaged_as_the_basis_says(
+    blank: TestClient, place: str, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    kept: dict[str, Mapping] = {}
+
+    def keep(*_session: object, mappings: dict[str, Mapping], **_more: object) -> None:
+        kept.update(mappings)
+
+    monkeypatch.setattr("server.routes.upload_reading.map_upload", keep)
+    sent = form_of(blank.get(place).text) | ANSWERS | BASIS | {"population_is": "january"}
+    blank.post(place, data=sent)
+    assert {mapping.population_is for mapping in kept.values()} == {"january"}
+    blank.post(place, data=sent | {"population_is": "midyear"})
+    assert {mapping.population_is for mapping in kept.values()} == {""}
+
+
+def test_a_file_that_moves_is_recognised_anew(blank: TestClient, place: str) -> None:
+    sent = form_of(blank.get(place).text) | ANSWERS | BASIS
+    assert blank.post(place, data=sent).status_code == 303
+    assert blank.get(f"{place.removesuffix('/reading')}/problems").status_code == 200
+    exchanged = {"deaths.role": "population", "population.role": "deaths"}
+    assert blank.post(place, data=sent | exchanged).status_code == 303
+    page = form_of(blank.get(place).text)
+    assert page["population.sex.0"] == ""  # what was said of it as deaths holds no longer
+    assert blank.get(f"{place.removesuffix('/reading')}/problems").status_code == 302
 
 
 def test_a_mapped_draft_shows_what_was_said(blank: TestClient, place: str) -> None:

@@ -74,6 +74,12 @@ def test_a_long_table_has_nothing_across(columns: tuple[str, ...]) -> None:
     assert across(columns, always) is None
 
 
+def test_of_two_ways_the_one_of_more_columns_goes_before() -> None:
+    found = across(("Year", "0", "1-4", "5+", "Males", "Females"), always)
+    assert found is not None
+    assert found.fields == ("age",)
+
+
 def test_columns_without_numbers_and_rates_are_not_across() -> None:
     assert across(("Age", "2010", "2011"), lambda column: column != "2011") is None
     found = across(("Age", "Rate 2010", "2010", "2011"), always)

@@ -149,6 +149,15 @@ def test_columns_that_are_gone_are_named() -> None:
     assert looked.mapping.whole == ""
 
 
+def test_where_no_edition_fits_the_newest_is_compared() -> None:
+    kept = stated(LONG, "deaths")
+    other = stated(LONG.replace(b"sex", b"gender"), "deaths")
+    content = LONG.replace(b"area", b"district")
+    looked = look(content, "a.csv", "deaths", before=[Before(4, kept), Before(3, other)])
+    assert looked.before == Before(4, kept)
+    assert looked.lost == (("area", "area"),)
+
+
 def test_years_across_are_those_of_the_new_file() -> None:
     old = b"area,sex,age,2014,2015\nN1,f,0,3,4\nN1,f,1+,5,6\n"
     new = b"area,sex,age,2014,2015,2016\nN1,f,0,3,4,5\nN1,f,1+,5,6,7\n"

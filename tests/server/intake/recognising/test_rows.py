@@ -13,6 +13,7 @@ TITLE = [("Deaths in Fenwold",), (), ("Source: civil register", "", "", "")]
     [
         (LONG, 1, 1),
         (TITLE + LONG, 4, 1),
+        (LONG + LONG, 1, 1),  # repeated, as printed pages do
         ([("Printed on", "2024-01-01", "", ""), (), *LONG], 3, 1),
         # commas in a title part it like a row of headings
         ([("Table 4. Deaths by age", "Fenwold", "2019 to 2021"), *LONG], 2, 1),
