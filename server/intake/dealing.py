@@ -94,8 +94,8 @@ class Pool:
 
     def grid(self, lines: Ints) -> AgeGrid:
         """The finest groups that some lines have in common."""
-        found = np.unique(self.block[lines]).tolist()
-        return reduce(AgeGrid.common, (self.blocks[block].grid for block in found))
+        grids = [self.blocks[block].grid for block in np.unique(self.block[lines]).tolist()]
+        return reduce(AgeGrid.common, grids)
 
     def infants(self, lines: Ints) -> Flags:
         """Whether they are a group of their own, [line]."""
