@@ -157,7 +157,7 @@ def adult(grid: AgeGrid) -> slice:
         ("single", 7, 37),
         ("irregular", 7, 37),
         ("abridged", 12, 300),
-        ("abridged", 19, 300),  # twelve do not settle at the least penalties, but at others
+        ("abridged", 19, 300),
     ],
 )
 def test_curves(name: str, seed: int, batch: int) -> None:
