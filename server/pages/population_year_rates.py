@@ -33,7 +33,7 @@ def rates(found: Findings, source: str) -> Chart | None:
             values(per_thousand[:closed]),
             sex=found.of.sex,  # type: ignore[arg-type]
             names=grid.labels[:closed],
-            at=At(68, at_age(grid, per_thousand, 53)),
+            at=At(68, at_age(grid, per_thousand, 53) or low),
         )
     ]
     alone = isolated(per_thousand[:closed])
@@ -58,7 +58,7 @@ def rates(found: Findings, source: str) -> Chart | None:
                 role="s2",
                 weight="that",
                 names=tuple(grid.labels[at] for at in of_law),
-                at=At(103, 0.25 * at_age(grid, per_thousand, 103), "center"),
+                at=At(103, 0.25 * (at_age(grid, per_thousand, 103) or low), "center"),
             )
         )
     on_scale = log_ticks(low / 2.5, high * 1.5)
