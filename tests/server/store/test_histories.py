@@ -12,15 +12,17 @@ from sqlalchemy.exc import IntegrityError
 from sqlalchemy.orm import Session
 
 from engine.ages import AgeGrid
-from server.store import areas, digests, editions, ranges, rows, schedules
+from server.store import areas, breaks, digests, editions, ranges, rows, schedules
 from server.store.connect import transaction
-from server.store.records import Area, Basis, Change, Edition, Key, Selection, Vector
+from server.store.records import Area, Basis, Break, Change, Edition, Key, Selection, Vector
 from tests.factories import NOON, stored_collection
 
 GRIDS = [AgeGrid((0, 1, 5, 10)), AgeGrid((0, 5, 10)), AgeGrid((0, 1, 2, 3, 4, 5, 10))]
 HISTORIES = {"sqlite": 60, "postgresql": 15}
-Content = tuple[dict[Key, tuple[str, str, bytes]], frozenset[tuple[str, str, bool]], Basis]
-NOTHING: Content = ({}, frozenset(), Basis("", "", "", "", ""))
+Content = tuple[
+    dict[Key, tuple[str, str, bytes]], frozenset[tuple[str, str, bool]], Basis, frozenset[Break]
+]
+NOTHING: Content = ({}, frozenset(), Basis("", "", "", "", ""), frozenset())
 
 
 class Broken(AssertionError):
@@ -60,7 +62,7 @@ class History:
         """A few schedules: new numbers, or only another status, or another grid; sometimes areas,
         the basis, keys that end, or a replacement of everything."""
         pick, base = self.random.choice, max(set(self.copies) - self.withdrawn)
-        cells, listed, basis = self.copies[base]
+        cells, listed, basis, broken = self.copies[base]
         handed = {}
         for _ in range(self.random.randrange(1, 8)):
             key = Key(pick("ABC"), pick("fm"), str(2000 + self.random.randrange(4)), "deaths")
@@ -88,6 +90,12 @@ class History:
             basis=basis if base and pick((True, False)) else said,
             replace=replace,
             ended=frozenset(ended),
+            breaks=tuple(
+                Break(area, "2002", "population", note=pick(("", "census")))
+                for area in ("", "A", "B")
+                if self.random.random() < 0.1
+            ),
+            ended_breaks=tuple(one for one in broken if self.random.random() < 0.1),
         )
 
     def commit(self, change: Change) -> None:
@@ -110,7 +118,12 @@ class History:
             cells[key] = (cell.status, cell.grid.code, cell.values.tobytes())
         tree = {area[0]: area for area in stood[1]}
         tree |= {area.code: (area.code, area.parent, area.delivered) for area in change.areas}
-        return cells, frozenset(tree.values()), change.basis
+        places = {(one.area, one.period, one.kind, one.cause): one for one in stood[3]}
+        for one in change.ended_breaks:
+            places.pop((one.area, one.period, one.kind, one.cause), None)
+        for one in change.breaks:
+            places[one.area, one.period, one.kind, one.cause] = one
+        return cells, frozenset(tree.values()), change.basis, frozenset(places.values())
 
     def fail(self, change: Change, monkeypatch: pytest.MonkeyPatch) -> None:
         def failing(*_arguments: object) -> Iterator[Any]:
@@ -118,7 +131,9 @@ class History:
             yield
 
         with monkeypatch.context() as patch:
-            patch.setattr(rows, self.random.choice(("schedules", "areas", "basis")), failing)
+            patch.setattr(
+                rows, self.random.choice(("schedules", "areas", "basis", "breaks")), failing
+            )
             with pytest.raises(Failure):
                 self.write(change)
 
@@ -151,14 +166,16 @@ class History:
             },
             frozenset((area.code, area.parent, area.delivered) for area in tree),
             edition.basis,
+            frozenset(breaks.listing(self.session, self.code, number)),
         )
 
 
 def digest(content: Content) -> str:
-    cells, tree, basis = content
+    cells, tree, basis, broken = content
     return digests.of_edition(
         [
             digests.of_basis(basis),
+            *map(digests.of_break, broken),
             *(digests.of_area(Area(code, "", *rest)) for code, *rest in tree),
             *(
                 digests.of_schedule(
