@@ -8,7 +8,6 @@ of a file stand.
 
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
-from functools import reduce
 from typing import TypeVar
 
 import numpy as np
@@ -94,8 +93,11 @@ class Pool:
 
     def grid(self, lines: Ints) -> AgeGrid:
         """The finest groups that some lines have in common."""
-        grids = [self.blocks[block].grid for block in np.unique(self.block[lines]).tolist()]
-        return reduce(AgeGrid.common, grids)
+        which: list[int] = np.unique(self.block[lines]).tolist()
+        grid = self.blocks[which[0]].grid
+        for block in which[1:]:
+            grid = grid.common(self.blocks[block].grid)
+        return grid
 
     def infants(self, lines: Ints) -> Flags:
         """Whether they are a group of their own, [line]."""
