@@ -68,8 +68,3 @@ def _require_possible(terms: Terms) -> None:
         raise Refused(
             "The size of areas cannot be below 0; found {value}.", value=terms.coarse_below
         )
-    if terms.rounding not in (0, 3, 5, 10):
-        raise Refused(
-            "Counts are rounded to {value}; the base can be 3, 5 or 10, or 0 for none.",
-            value=terms.rounding,
-        )

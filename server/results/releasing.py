@@ -52,5 +52,4 @@ def shown(vector: Vector, hidden: Hidden) -> Vector:
         if age >= 0:
             values[grid.position(age)] = value
             ages.append(age)
-    withheld = () if hidden.rounded else tuple(ages)
-    return replace(vector, grid=grid, values=values, withheld=withheld)
+    return replace(vector, grid=grid, values=values, withheld=tuple(ages))

@@ -30,7 +30,7 @@ class Kept:
     @property
     def cells(self) -> int:
         """How many counts are withheld; sums over age are none of them."""
-        return sum(age >= 0 for one in self.mask.values() if not one.rounded for age in one.ages)
+        return sum(age >= 0 for one in self.mask.values() for age in one.ages)
 
 
 @dataclass(frozen=True, slots=True)
@@ -172,7 +172,7 @@ def write(
 def packed(kept: Kept) -> bytes:
     """One spelling for each mask."""
     rows: list[list[Any]] = [
-        [*_codes(key), list(one.ages), list(one.values), list(one.starts), one.rounded]
+        [*_codes(key), list(one.ages), list(one.values), list(one.starts)]
         for key, one in sorted(kept.mask.items())
     ]
     text = json.dumps({"exposed": kept.exposed, "narrow": kept.narrow, "hidden": rows})
@@ -188,7 +188,7 @@ def unpacked(content: bytes) -> Kept:
     """The mask in stored bytes. (Many pages ask for the same one.)"""
     stored: Lookup[str, Any] = json.loads(zlib.decompress(content))
     mask = {
-        Key(*row[:5]): Hidden(tuple(row[5]), tuple(row[6]), tuple(row[7]), row[8])
+        Key(*row[:5]): Hidden(tuple(row[5]), tuple(row[6]), tuple(row[7]))
         for row in stored["hidden"]
     }
     return Kept(mask, stored["exposed"], stored["narrow"])

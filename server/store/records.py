@@ -218,7 +218,6 @@ class Terms:
     persons: int = 0  # cells with fewer person-years, and the deaths in them, are withheld; 0: none
     zeros: str = "shown"  # or "withheld": whether it is said that nobody died
     coarse_below: int = 0  # persons; smaller areas are given by five-year groups; 0: none
-    rounding: int = 0  # base to which counts are rounded instead of being withheld; 0: withhold
 
 
 @dataclass(frozen=True, slots=True)
@@ -239,7 +238,6 @@ class Hidden:
     ages: tuple[int, ...]  # starts of the groups withheld; -1: the sum over age
     values: tuple[float, ...]  # worked out from what is shown, never the counts
     starts: tuple[int, ...] = ()  # coarser groups it is given by; empty: its own
-    rounded: bool = False  # the values are shown: counts to a base
 
 
 Mask = Mapping[Key, Hidden]
