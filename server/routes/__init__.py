@@ -7,6 +7,7 @@ from server.routes import (
     contents,
     curves,
     methods,
+    policy,
     population_year,
     quality,
     receiving,
@@ -32,4 +33,5 @@ ROUTERS = (
     receiving.router,
     upload_reading.router,
     methods.router,
+    policy.router,
 )

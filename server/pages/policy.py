@@ -1,0 +1,165 @@
+"""What of small counts does this collection show? Its policy, its effect, and how to set it."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import ClassVar
+
+from server.exports import status
+from server.exports.table import Column, GapKind, Row, Table
+from server.pages.form_fields import Field
+from server.pages.page import Frame, Page
+from server.sentences import policy as say
+from server.sentences.dates import day
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.text import _
+from server.store import collections, masks, policies
+from server.store.connect import Session
+from server.store.masks import Kept
+from server.store.records import Policy, Terms
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class PolicyPage(Page):
+    """The policy that holds."""
+
+    template: ClassVar[str] = "policy/page.html"
+    effects: Table
+    past: Table
+    how: tuple[Sentence, ...]
+    about_setting: str
+    action: str
+    fields: tuple[Field, ...]
+    trial: tuple[Field, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Trial:
+    """Terms that are not set, and what they would withhold, by edition."""
+
+    terms: Terms
+    kept: Mapping[int, Kept]
+
+
+def build(session: Session, code: str, trial: Trial | None = None) -> PolicyPage:
+    collection = collections.find(session, code)
+    known = policies.listing(session, code)
+    newest = known[0] if known else None
+    kept = masks.of_editions(session, code, newest.number) if newest else {}
+    terms = trial.terms if trial else newest.terms if newest else Terms()
+    shown = trial.kept if trial else kept
+    last = shown[max(shown)] if shown else Kept({})
+    place = f"/c/{code}/policy"
+    effects, past = _effects(shown), _past(known)
+    return PolicyPage(
+        frame=Frame(
+            title=_("Policy of {collection}", collection=collection.name),
+            address=place,
+            locator=phrase(
+                _("{collections}: policy of {collection}"),
+                collections=Piece(_("Collections"), "/collections"),
+                collection=Piece(collection.name, f"/c/{code}"),
+            ),
+            shown=_("Data owner: {owner}", owner=collection.owner),
+            nav="collections",
+        ),
+        answer=say.trial(trial.terms, last.cells)
+        if trial
+        else say.answer(collection.name, newest.terms if newest else None, last.cells),
+        lead=say.lead(newest.note if newest else "", last.exposed),
+        tables=tuple(table for table in (effects, _marks(), past) if table.rows),
+        twins={twin: f"{place}.{twin}" for twin in ("csv", "xlsx", "json")} if not trial else {},
+        effects=effects,
+        past=past,
+        how=say.how(),
+        about_setting=say.about_setting(),
+        action=place,
+        fields=(*_fields(terms), Field("text", "note", _("Why, in a sentence"), required=True)),
+        trial=_fields(terms),
+    )
+
+
+def _effects(kept: Mapping[int, Kept]) -> Table:
+    return Table(
+        "effect",
+        _("What is withheld of each edition"),
+        (
+            Column("edition", _("edition")),
+            Column("withheld", _("counts withheld"), decimals=0),
+            Column("narrow", _("told apart from some small counts"), decimals=0),
+            Column("exposed", _("may be worked out"), decimals=0),
+        ),
+        tuple(
+            Row((number, one.cells, one.narrow, one.exposed))
+            for number, one in sorted(kept.items(), reverse=True)
+        ),
+        say.about_effects(),
+    )
+
+
+def _past(known: tuple[Policy, ...]) -> Table:
+    return Table(
+        "policies",
+        _("Policies, the newest first"),
+        (
+            Column("policy", _("policy")),
+            Column("made", _("set")),
+            Column("by", _("by")),
+            Column("terms", _("terms")),
+            Column("note", _("why")),
+        ),
+        tuple(
+            Row((one.number, day(one.made), one.by, say.terms(one.terms), one.note))
+            for one in known
+        ),
+    )
+
+
+def _marks() -> Table:
+    """Every mark of a number or a gap, on pages and in files."""
+    told = say.gaps()
+    rows = [(told[kind.value][0], status.OF_GAPS[kind], told[kind.value][1]) for kind in GapKind]
+    rows += say.states()
+    return Table(
+        "marks",
+        _("Marks of numbers and of gaps"),
+        (
+            Column("mark", _("on pages")),
+            Column("obs_status", _("in files (obs_status)")),
+            Column("meaning", _("what it means")),
+        ),
+        tuple(Row(row) for row in rows),
+        say.about_marks(),
+    )
+
+
+def _fields(terms: Terms) -> tuple[Field, ...]:
+    return (
+        Field(
+            "text",
+            "threshold",
+            _("Fewest deaths that are shown"),
+            str(terms.threshold),
+            hint=_("2 to 100; counts from 1 to one less are withheld"),
+        ),
+        Field(
+            "text",
+            "persons",
+            _("Fewest people"),
+            str(terms.persons),
+            hint=_("0: no such rule; deaths of fewer people are withheld, and the people"),
+        ),
+        Field(
+            "text",
+            "coarse_below",
+            _("Five-year ages below"),
+            str(terms.coarse_below),
+            hint=_("people in the area; 0: no such rule"),
+        ),
+        Field(
+            "select",
+            "zeros",
+            _("Nil"),
+            terms.zeros,
+            options=(("shown", _("is shown")), ("withheld", _("is withheld"))),
+        ),
+    )

@@ -1,0 +1,159 @@
+"""A collection's policy in words."""
+
+from typing import Protocol
+
+from server.sentences.numbers import whole
+from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.text import _, n_
+
+
+class Terms(Protocol):
+    """What a policy withholds."""
+
+    @property
+    def threshold(self) -> int: ...
+    @property
+    def persons(self) -> int: ...
+    @property
+    def zeros(self) -> str: ...
+    @property
+    def coarse_below(self) -> int: ...
+
+
+def answer(collection: str, of: Terms | None, withheld: int) -> Sentence:
+    """`withheld` counts of the newest edition."""
+    if of is None:
+        return phrase(
+            _("{collection} has no policy: every count is shown, however small."),
+            collection=collection,
+        )
+    return phrase(
+        _("{collection} withholds {terms}: {counts} in the newest edition."),
+        collection=collection,
+        terms=terms(of),
+        counts=_counts(withheld),
+    )
+
+
+def trial(of: Terms, withheld: int) -> Sentence:
+    return phrase(
+        _("Withholding {terms} would take {counts} of the newest edition. Nothing is set yet."),
+        terms=terms(of),
+        counts=_counts(withheld),
+    )
+
+
+def terms(of: Terms) -> str:
+    """What is withheld, to stand inside a sentence."""
+    told = [
+        _("deaths from 0 to {most}", most=of.threshold - 1)
+        if of.zeros == "withheld"
+        else _("deaths from 1 to {most}", most=of.threshold - 1)
+    ]
+    if of.persons:
+        told.append(_("deaths among fewer than {least} people", least=whole(of.persons)))
+    if of.coarse_below:
+        told.append(_("single ages of areas below {people} people", people=whole(of.coarse_below)))
+    return "; ".join(told)
+
+
+def _counts(withheld: int) -> str:
+    return n_("one count", "{count} counts", withheld, count=whole(withheld))
+
+
+def lead(note: str, exposed: int) -> tuple[Sentence, ...]:
+    """Why the policy, and how many small counts it could not protect."""
+    said = [phrase(_("Why: {note}"), note=note)] if note else []
+    if exposed:
+        said.append(
+            phrase(
+                "{word} {text}",
+                word=Piece(_("Look at this."), emphasis="rubric"),
+                text=n_(
+                    "One small count of the newest edition may be worked out all the same, since"
+                    " earlier editions show all that could have protected it.",
+                    "{count} small counts of the newest edition may be worked out all the same,"
+                    " since earlier editions show all that could have protected them.",
+                    exposed,
+                ),
+            )
+        )
+    return tuple(said)
+
+
+def how() -> tuple[Sentence, ...]:
+    return tuple(
+        phrase(text)
+        for text in (
+            _(
+                "Counts that add up to a sum that is shown protect one another: where a small count"
+                " is withheld, so are others of the same age and area, until no withheld one can be"
+                " worked out, nor be told apart from other small ones, from all that this edition"
+                " and those before it show."
+            ),
+            _(
+                "What one edition withholds stays withheld in those after it; a number that changed"
+                " is protected anew."
+            ),
+            _(
+                "Figures that rest on a withheld count are worked out with an estimate in its"
+                " place, made of what is shown and of nothing else, and are given to fixed"
+                " decimals. No death rate, chance of dying or limit of a withheld count is given."
+            ),
+            _(
+                "Addresses with figures=full show everything, for work inside the office. What was"
+                " shown before a policy was set cannot be called back."
+            ),
+        )
+    )
+
+
+def about_setting() -> str:
+    return _(
+        "A policy is set for the whole collection, and every edition gets its mask anew. Pages may"
+        " show less from then on; their addresses stay."
+    )
+
+
+def about_effects() -> str:
+    return _(
+        "Counts by area, sex, year and age. Those told apart from some small counts are not known,"
+        " but fewer numbers than the policy asks for are left that they might be."
+    )
+
+
+def about_marks() -> str:
+    return _(
+        "Codes of the SDMX list of observation status (CL_OBS_STATUS). Withheld counts also have"
+        " conf_status C (CL_CONF_STATUS). The list has no code for a revised number: files have a"
+        " column revised. Of several that are true the first of B, E, P is given."
+    )
+
+
+def gaps() -> dict[str, tuple[str, str]]:
+    """Each kind of gap: how it looks, and what it means."""
+    return {
+        "withheld": (
+            _("withheld (a blot)"),
+            _("There is a number, and it is not shown, to protect people."),
+        ),
+        "nil": (_("nil (a dash)"), _("Nobody was counted.")),
+        "not available": (_("not available (three dots)"), _("No number was delivered.")),
+        "undefined": (
+            _("undefined (a cross)"),
+            _("No number can be made of what is there; the reason stands beside."),
+        ),
+    }
+
+
+def states() -> tuple[tuple[str, str, str], ...]:
+    return (
+        (_("a number"), "A", _("As counted, or worked out from final counts.")),
+        (_("a number with p"), "P", _("Provisional: late reports may still move it.")),
+        (
+            _("a number"),
+            "E",
+            _("It rests on estimates: of withheld counts, of split areas, or made from rates."),
+        ),
+        (_("a number"), "B", _("The first year after a break in the series.")),
+    )

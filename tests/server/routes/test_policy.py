@@ -1,0 +1,63 @@
+"""The page of a policy: what it withholds, tried and set."""
+
+import pytest
+from starlette.testclient import TestClient
+
+PLACE = "/c/isle/policy"
+TERMS = {"threshold": "5", "persons": "0", "coarse_below": "0", "zeros": "shown"}
+
+
+def test_without_a_policy_the_page_says_that_everything_is_shown(reader: TestClient) -> None:
+    page = reader.get(PLACE)
+    assert page.status_code == 200
+    assert "has no policy: every count is shown" in page.text
+
+
+def test_a_trial_sets_nothing(reader: TestClient) -> None:
+    tried = reader.get(PLACE, params=TERMS)
+    assert "Nothing is set yet." in tried.text
+    assert "has no policy" in reader.get(PLACE).text
+
+
+def test_a_policy_is_set_and_pages_withhold(reader: TestClient) -> None:
+    place = "/c/isle/1/population-year?of=rock.f.2014&figures={}&settings=almanac-1"
+    before = reader.get(place.format("released"))
+    set_ = reader.post(PLACE, data=TERMS | {"note": "As decided."}, follow_redirects=False)
+    assert (set_.status_code, set_.headers["location"]) == (303, PLACE)
+    page = reader.get(PLACE).text
+    assert "deaths from 1 to 4" in page
+    assert "As decided." in page
+    after = reader.get(place.format("released"))
+    assert after.headers["etag"] != before.headers["etag"]
+    assert "blot" in after.text
+    assert "blot" not in before.text
+    full = reader.get(place.format("full"))
+    assert "blot" not in full.text
+    assert "not for release" in full.text
+
+
+def test_a_released_page_does_not_give_the_digest_of_the_counts(reader: TestClient) -> None:
+    place = "/c/isle/1/contents?figures={}&settings=almanac-1"
+    open_ = reader.get(place.format("released")).text
+    reader.post(PLACE, data=TERMS | {"note": "As decided."})
+    digest = open_.partition("content ")[2][:14]
+    assert digest in reader.get(place.format("full")).text
+    assert digest not in reader.get(place.format("released")).text
+
+
+@pytest.mark.parametrize(
+    ("name", "value", "said"),
+    [
+        ("threshold", "1", "it can be 2 to 100"),
+        ("threshold", "many", "it takes a whole number"),
+        ("zeros", "hidden", "they can be shown or withheld"),
+        ("note", "", "A policy needs a note"),
+    ],
+)
+def test_terms_that_cannot_be_are_refused(
+    reader: TestClient, name: str, value: str, said: str
+) -> None:
+    answer = reader.post(PLACE, data=TERMS | {"note": "As decided."} | {name: value})
+    assert answer.status_code in (409, 422)
+    assert said in answer.text
+    assert "has no policy" in reader.get(PLACE).text
