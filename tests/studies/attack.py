@@ -150,18 +150,20 @@ def harvest(reader: TestClient, editions: Iterable[int], asked: Iterable[Questio
 def _told(figures: dict[str, Any]) -> Iterator[tuple[int, float, float]]:
     starts = dict(zip(GRID.labels, GRID.starts, strict=True))
     people: dict[int, float] = {}
-    for table in figures.values():
+    for name, table in figures.items():
+        if name == "single":  # single years worked out from groups are no counts
+            continue
         for row in table["rows"]:
             start = starts.get(str(row.get("age")))
             if start is None:
                 continue
             years = row.get("person_years")
             people |= {start: years} if isinstance(years, float) else {}
-            for name in ("deaths", "there"):
-                if (told := _count(row.get(name))) is not None:
+            for key in ("deaths", "there"):
+                if (told := _count(row.get(key))) is not None:
                     yield start, told, told
-            for name in ("mx", "counted"):
-                rate, years = row.get(name), people.get(start)
+            for key in ("mx", "counted"):
+                rate, years = row.get(key), people.get(start)
                 if isinstance(rate, float) and years:
                     yield (start, *_deaths(rate, years, 1000))
     for table in figures.values():
