@@ -17,7 +17,8 @@ def taken(
     """
     _require_handed(parsed, taking)
     cells = {key: cell for key, cell in parsed.cells.items() if taking.takes(key.area, key.period)}
-    if not cells and (parsed.cells or not (parsed.breaks or parsed.successions)):
+    said = bool(parsed.breaks or parsed.successions)  # of counts that stand
+    if not cells and (parsed.cells or not said or not tuple(base_areas)):
         raise Refused(
             "Of these areas and years the files hold no counts. Choose areas and years that go "
             "together, or take all of them."

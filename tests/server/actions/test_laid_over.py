@@ -321,3 +321,9 @@ def test_codes_that_became_others_are_not_missed(
     assert ("north" in codes(session, 2)) is missed
     years = {key.period for key in held(session, 2, "isle")}
     assert years == (set() if missed else {"2001", "2002", "2003", "2004"})
+
+
+def test_breaks_of_nothing_make_no_edition(session: Session) -> None:
+    upload = checked_upload(session, breaks="area,year,kind\n,2002,population\n")
+    with pytest.raises(Refused, match="hold no counts"):
+        made(session, upload)
