@@ -162,7 +162,6 @@ class Changes:
     names: dict[str, str]  # of areas of either edition, by code
     altered: tuple[Altered, ...]
     moved: tuple[Headline, ...]  # largest first within an indicator
-    unmoved: int  # population-years whose counts changed though no headline did
     periods: tuple[frozenset[str], frozenset[str]]  # held then, held now
     others: tuple[int, ...]  # numbers of all editions, the newest first
     areas: tuple[tuple[Area | None, Area | None], ...]  # then, now: added, gone or placed elsewhere
@@ -205,7 +204,7 @@ def found_changes(session: Session, heading: Heading, question: ChangesQuestion)
         Altered(key, *pair) for key, pair in _differing(session, code, then.number, now, question)
     )
     trees = (areas.listing(session, code, then.number), areas.listing(session, code, now))
-    moved, touched = headlines(
+    moved = headlines(
         session,
         code,
         (then.number, now),
@@ -221,7 +220,6 @@ def found_changes(session: Session, heading: Heading, question: ChangesQuestion)
         names={area.code: area.name for tree in trees for area in tree},
         altered=altered,
         moved=moved,
-        unmoved=len(touched - {one.of for one in moved}),
         periods=(_periods(session, code, then.number), _periods(session, code, now)),
         others=tuple(one.number for one in editions.listing(session, code)),
         areas=_areas(*trees),

@@ -43,13 +43,12 @@ def headlines(
     changed: Iterable[Key],
     settings: str,
     shown: str,
-) -> tuple[tuple[Headline, ...], set[PopulationYear]]:
+) -> tuple[Headline, ...]:
     """The usual figures that another count of these schedules moves, largest first within an
-    indicator, those one edition lacks before all; and every population-year looked at. `shown`:
+    indicator, those one edition lacks before all. `shown`:
     as released, or in full. Two statements."""
     chain = named.find(settings)
-    touched = reached(changed, trees, chain)
-    ones = sorted(touched)
+    ones = sorted(reached(changed, trees, chain))
     values = []
     for number, tree in zip(numbers, trees, strict=True):
         beside = Beside.of(chain, tree)
@@ -61,7 +60,7 @@ def headlines(
         moved = ~((before == after) | (np.isnan(before) & np.isnan(after)))
         rows = [Headline(ones[at], key, before[at], after[at]) for at in np.flatnonzero(moved)]
         found += sorted(rows, key=lambda one: (-_size(one.move), one.of))
-    return tuple(found), touched
+    return tuple(found)
 
 
 def _size(move: float) -> float:

@@ -10,8 +10,9 @@ from sqlalchemy.orm import Session
 
 from engine import indicators
 from engine import settings as named
+from engine.ages import AgeGrid
 from engine.panel import Panel
-from server.results.changes import Changes, ChangesQuestion, found_changes, yearly
+from server.results.changes import Altered, Changes, ChangesQuestion, found_changes, yearly
 from server.results.headlines import reached
 from server.results.holdings import NotInEdition
 from server.results.keys import BadValue, PopulationYear
@@ -105,7 +106,9 @@ def test_the_other_way_round_every_sign_is_turned(isle: Session) -> None:
 
 
 def test_pooled_years_move_with_any_of_them(isle: Session) -> None:
-    found = changes(isle, settings="almanac-1-3-years")
+    edition(isle, {"north.m.2012": counted("m", 3.2e-5)})
+    found = changes(isle, 3, settings="almanac-1-3-years")
+    assert {one.key.period for one in found.altered} == {"2012"}
     assert {one.of.period for one in found.moves("e0")} == {"2014"}
 
 
@@ -152,6 +155,20 @@ def test_what_cannot_be_set_side_by_side_is_refused(isle: Session) -> None:
     for text in ("0", "x", "-1", "9" * 12):
         with pytest.raises(BadValue, match="number of an edition"):
             ChangesQuestion.parse([("since", text)])
+
+
+def test_a_gap_on_both_sides_is_no_change_and_one_on_either_is() -> None:
+    (key,), (cell,) = zip(*cells("a", sexes="f", measures=("deaths",)).items(), strict=True)
+    sides = [
+        replace(cell, values=np.array(values))
+        for values in ((1.0, np.nan, 3.0, np.nan), (1.0, np.nan, 4.0, 5.0))
+    ]
+    one = Altered(key, *sides)
+    assert (one.kind, one.ages) == ("numbers", 2)
+    assert Altered(key, sides[0], sides[0]).kind == "marks"
+    assert (Altered(key, None, cell).kind, Altered(key, cell, None).ages) == ("added", 4)
+    coarser = replace(cell, grid=AgeGrid((0, 5)), values=np.array([3.0, 7.0]))
+    assert (Altered(key, cell, coarser).kind, Altered(key, cell, coarser).ages) == ("groups", 2)
 
 
 def test_a_year_is_counted_once_whatever_levels_hold_it() -> None:

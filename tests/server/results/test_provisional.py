@@ -10,6 +10,7 @@ from sqlalchemy.orm import Session
 
 from engine import indicators
 from engine import settings as named
+from engine.ages import Array
 from engine.panel import Panel
 from server.pages.contents import build as build_contents
 from server.pages.trend import build as build_trend
@@ -18,7 +19,14 @@ from server.results.contents import ContentsQuestion
 from server.results.provisional import Track, track
 from server.results.questions import TrendQuestion
 from server.store.heading import heading
-from tests.factories import edition, gompertz_panel, withdrawn
+from server.store.records import Area, Key, Vector
+from tests.factories import (
+    edition,
+    gompertz_panel,
+    stored_collection,
+    stored_edition,
+    withdrawn,
+)
 
 E0 = indicators.find("e0")
 
@@ -54,6 +62,24 @@ def test_from_the_first_that_had_it_to_the_one_that_is_read(session: Session) ->
         assert (past.of.code, past.first) == ("north.f.2014", 1)
         assert past.moved == pytest.approx(e0(last) - e0(A), abs=1e-12)
         assert past.deaths == pytest.approx(last.deaths.sum() / A.deaths.sum() - 1, abs=1e-12)
+
+
+def test_the_first_of_deaths_and_people_counts(session: Session) -> None:
+    """The deaths came first as provisional, the people in a file of their own a year later."""
+    stored_collection(session, "isle")
+    north = [Area("north", "North")]
+
+    def cell(measure: str, values: Array, status: str) -> dict[Key, Vector]:
+        return {Key("north", "f", "2014", measure): Vector(status, A.grid, values)}
+
+    first = cell("deaths", A.deaths, "provisional") | cell("person_years", A.exposure, "final")
+    stored_edition(session, first, collection="isle", areas=north)
+    second = cell("person_years", A.exposure * 1.01, "provisional")
+    stored_edition(session, second, collection="isle", areas=north)
+    edition(session, {"north.f.2014": C})
+    (past,) = history(session, 3).pasts
+    assert past.first == 1
+    assert past.moved == pytest.approx(e0(C) - e0(A), abs=1e-9)
 
 
 def test_only_editions_it_was_built_on_count(session: Session) -> None:
