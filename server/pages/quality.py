@@ -50,7 +50,7 @@ class QualityPage(Page):
 
 
 def build(session: Session, heading: Heading, question: QualityQuestion) -> QualityPage:
-    found = quality(session, heading)
+    found = quality(session, heading, question.figures)
     said = statements.listing(session, heading.collection.code, heading.edition.number)
     kept = _kept(session, heading.edition)
     tables = quality_tables.tables(found, said, kept.warnings)

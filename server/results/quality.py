@@ -15,7 +15,8 @@ from server.intake.ledger import Ledger
 from server.intake.problems import Fault
 from server.intake.standing import Standing
 from server.results.questions import DEFAULT_SETTINGS, Items, Keys
-from server.store import areas, schedules
+from server.results.releasing import released
+from server.store import areas
 from server.store.connect import Session
 from server.store.heading import Heading
 from server.store.records import Area, Key, Selection, Vector
@@ -97,11 +98,11 @@ class Quality:
         return tuple(sorted({year for (_, year), one in self.places.items() if one.provisional}))
 
 
-def quality(session: Session, heading: Heading) -> Quality:
+def quality(session: Session, heading: Heading, figures: str = "released") -> Quality:
     """Two statements; the checks of figures run over all that the edition holds."""
     code, number = heading.collection.code, heading.edition.number
     tree = areas.listing(session, code, number)
-    held = schedules.load(session, code, number, Selection(measures=MEASURES))
+    held = released(session, code, number, Selection(measures=MEASURES), figures)
     cells = _without_sums(held)
     periods = tuple(sorted({key.period for key in cells}))
     told = doubts(ledger(tree, cells))
