@@ -30,7 +30,7 @@ def things(count: int) -> str:
 def answer(files: Sequence[str], errors: int, warnings: int) -> Sentence:
     """Whether an edition can be made, and what stands in the way."""
     values = {
-        "files": names.listed(list(files)),
+        "files": names.listed(list(dict.fromkeys(files))),
         "errors": things(errors),
         "warnings": things(warnings),
     }
@@ -54,7 +54,7 @@ def answer(files: Sequence[str], errors: int, warnings: int) -> Sentence:
 
 
 def became(files: Sequence[str], edition: Piece) -> Sentence:
-    return phrase(_("{files} became {edition}."), files=names.listed(list(files)), edition=edition)
+    return phrase(_("{files} became {edition}."), files=names.listed(list(dict.fromkeys(files))), edition=edition)
 
 
 def outcome(errors: int, warnings: int, rows: int, sound: int) -> str:
