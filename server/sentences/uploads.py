@@ -54,7 +54,11 @@ def answer(files: Sequence[str], errors: int, warnings: int) -> Sentence:
 
 
 def became(files: Sequence[str], edition: Piece) -> Sentence:
-    return phrase(_("{files} became {edition}."), files=names.listed(list(dict.fromkeys(files))), edition=edition)
+    return phrase(
+        _("{files} became {edition}."),
+        files=names.listed(list(dict.fromkeys(files))),
+        edition=edition,
+    )
 
 
 def outcome(errors: int, warnings: int, rows: int, sound: int) -> str:
