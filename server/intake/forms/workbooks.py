@@ -114,11 +114,17 @@ def _tabs(book: Package, main: str) -> tuple[tuple[Tab, ...], bool, dict[str, st
             kind, part = links.get(key, ("", ""))
             if kind == "worksheet":
                 hidden = given.get("state", "visible") != "visible"
-                tabs.append(Tab(given.get("name", ""), *_size(book, part), hidden, part))
+                tabs.append(Tab(given.get("name", ""), 1, 1, hidden, part))
         elif local(tag) == "workbookPr":
             from_1904.append(given.get("date1904") in ("1", "true"))
 
     book.parse(main, begin)
+    if len(tabs) > 1:  # of a single one the size is known when it was read
+        sizes = [_size(book, tab.part) for tab in tabs]
+        tabs = [
+            replace(tab, rows=rows, columns=columns)
+            for tab, (rows, columns) in zip(tabs, sizes, strict=True)
+        ]
     return tuple(tabs), any(from_1904), dict(links.values())
 
 

@@ -77,6 +77,8 @@ def test_rates_of_persons_beside_both_sexes_are_not_used() -> None:
     parsed = parse([rated(TABLE + TABLE_P)])
     assert {sex for _, sex, _ in deaths(parsed)} == {"f", "m"}
     assert {sex for _, sex, _ in deaths(parse([rated(TABLE_P)]))} == {"p"}
+    women = where(TABLE, sex="f")
+    assert {sex for _, sex, _ in deaths(parse([rated(women + TABLE_P)]))} == {"f", "p"}
 
 
 def test_a_total_over_the_ages_is_no_sum_of_rates() -> None:
