@@ -10,7 +10,7 @@ from server.intake.checks.series import years_worded
 from server.intake.ledger import Ledger
 from server.intake.problems import Fault
 
-AGAIN = 0.5  # share of what stands that is handed in again: then the rest is missed
+AGAIN = 0.5  # where more of what stands is handed in again, the rest is missed
 
 
 def _deaths_held(ledger: Ledger) -> Ints:
@@ -23,11 +23,11 @@ def _areas_gone(ledger: Ledger) -> Iterator[Fault]:
     """Areas that stand with deaths and are not handed in, where most others are."""
     if ledger.standing is None or ledger.unplaced or not ledger.of("deaths"):
         return
-    held = {key.area for key in ledger.standing.cells if key.measure == "deaths"}
     handed = {ledger.codes[area] for area in np.unique(parts_of(ledger.places("deaths"))[0])}
-    sums = {area.parent for area in ledger.standing.areas if not area.delivered}
-    gone = sorted(held - handed - {code for code in sums if code})
-    if gone and len(held & handed) >= AGAIN * len(held):
+    sums = {area.parent for area in ledger.standing.areas}
+    held = {key.area for key in ledger.standing.cells if key.measure == "deaths"} - sums
+    gone = sorted(held - handed)
+    if gone and len(held & handed) > AGAIN * len(held):
         yield Fault(values={"areas": ", ".join(gone)[:200], "count": len(gone)})
 
 
@@ -45,7 +45,7 @@ def _years_gone(ledger: Ledger) -> Iterator[Fault]:
         lost = missing[missing // YEARS == series]
         if not len(own):
             continue
-        if np.isin(stood, own).sum() < AGAIN * len(stood):
+        if np.isin(stood, own).sum() <= AGAIN * len(stood):
             lost = lost[(lost > own.min()) & (lost < own.max())]
         if len(lost):
             years = years_worded((lost % YEARS).tolist())
