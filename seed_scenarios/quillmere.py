@@ -21,12 +21,13 @@ from seed_scenarios.quillmere_files import (
     deaths_csv,
     population_csv,
 )
-from server.actions import LOCAL, Basis, Mapping, Session, Viewer
+from server.actions import LOCAL, Basis, Mapping, Session, Terms, Viewer
 from server.actions.check_upload import check_upload
 from server.actions.commit_upload import commit_upload
 from server.actions.create_collection import create_collection
 from server.actions.map_upload import map_upload
 from server.actions.receive_upload import receive_upload
+from server.actions.set_policy import set_policy
 
 CODE, NAME = "quillmere", "All deaths, Quillmere"
 STORY = (
@@ -57,6 +58,7 @@ NOTES = (
     f"Revision of {REVISED} in Northlade: deaths under inquest, left out at first.",
     f"Population from {REBASED} on after the census of {CENSUS}; deaths as they stood.",
 )
+POLICY = "One or two deaths of an age in a small region could name a person."
 _COLUMNS = Mapping(
     year="year",
     sex="sex",
@@ -81,9 +83,10 @@ Files = dict[str, tuple[str, bytes]]  # role: name and content
 
 
 def build(session: Session, *, now: dt.datetime) -> None:
-    """Open the collection and hand in its three editions."""
+    """Open the collection, hand in its three editions, and set what small counts it shows."""
     deliver(session, now=now)
     recount(session, now=now)
+    protect(session, now=now)
 
 
 def deliver(session: Session, *, now: dt.datetime) -> None:
@@ -105,6 +108,12 @@ def recount(session: Session, *, now: dt.datetime) -> None:
         "breaks": ("quillmere-breaks.csv", breaks_csv()),
     }
     _hand_in(session, files, note=NOTES[2], now=now, basis=replace(BASIS, vintage=VINTAGE))
+
+
+def protect(session: Session, *, now: dt.datetime) -> None:
+    """The policy of the office: one or two deaths are withheld, most of them in Little Auk."""
+    terms = Terms(threshold=3)
+    set_policy(session, collection=CODE, terms=terms, note=POLICY, by=OFFICE, now=now)
 
 
 def _files(counts: dict[str, Counts], years: tuple[int, ...], areas: tuple[str, ...]) -> Files:

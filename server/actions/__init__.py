@@ -3,6 +3,6 @@
 from server.accounts.viewer import LOCAL, Viewer
 from server.intake.mapping import Mapping
 from server.store.connect import Session
-from server.store.records import Basis
+from server.store.records import Basis, Terms
 
-__all__ = ["LOCAL", "Basis", "Mapping", "Session", "Viewer"]
+__all__ = ["LOCAL", "Basis", "Mapping", "Session", "Terms", "Viewer"]

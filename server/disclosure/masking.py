@@ -190,7 +190,7 @@ def _by_schedule(
                 ages += inside
                 values += [float(stand[slot, sex]) / len(inside)] * len(inside)
             key = Key(of.areas[place].code, SEXES[sex], period, measure)
-            found[key] = Hidden(tuple(ages), tuple(round(value, 6) for value in values))
+            found[key] = Hidden(tuple(ages), tuple(round(value, 9) for value in values))
     return found
 
 

@@ -51,7 +51,7 @@ def trend(
     number: int = 2,
 ) -> Estimate:
     """One indicator of one area and sex in edition 2 or another, [year] from 1999."""
-    asked = [("of", of), ("area", area), ("sex", sex), ("settings", settings)]
+    asked = [("of", of), ("area", area), ("sex", sex), ("settings", settings), ("figures", "full")]
     question = TrendQuestion.parse([*asked, ("from", "1999"), ("to", "2023")])
     return series(session, heading(session, quillmere.CODE, number), question).estimate[0]
 
@@ -79,7 +79,7 @@ def test_the_districts_of_tollbay_are_added_up_to_what_it_has(island: Session) -
     held = {area.code for area in areas.listing(island, quillmere.CODE, 1)}
     assert held == {*(region.code for region in REGIONS), WHOLE.code}
     asked = [PopulationYear("tollbay", sex, str(year)) for sex in "fm" for year in YEARS]
-    found = load(island, quillmere.CODE, 1, asked)
+    found = load(island, quillmere.CODE, 1, asked, figures="full")
     told = counted(revised=False)["tollbay"]
     for one in asked:
         at = (int(one.period) - 1999, "fm".index(one.sex))
@@ -89,7 +89,9 @@ def test_the_districts_of_tollbay_are_added_up_to_what_it_has(island: Session) -
 
 def test_the_census_moves_the_population_and_no_death(island: Session) -> None:
     asked = [PopulationYear(WHOLE.code, "f", str(year)) for year in YEARS]
-    before, after = (load(island, quillmere.CODE, number, asked) for number in (2, 3))
+    before, after = (
+        load(island, quillmere.CODE, number, asked, figures="full") for number in (2, 3)
+    )
     for one in asked:
         assert np.array_equal(before[one].panel.deaths, after[one].panel.deaths)
         fewer = after[one].panel.exposure.sum() < before[one].panel.exposure.sum()
@@ -148,7 +150,7 @@ def test_only_2023_is_provisional(island: Session) -> None:
 def test_the_whole_and_persons_are_sums(island: Session) -> None:
     codes = [*(region.code for region in REGIONS), WHOLE.code]
     asked = [PopulationYear(code, sex, "2012") for code in codes for sex in ("f", "m", "p")]
-    held = load(island, quillmere.CODE, 2, asked)
+    held = load(island, quillmere.CODE, 2, asked, figures="full")
     total = {
         (one.area, one.sex): (
             loaded.panel.deaths.sum(),
@@ -231,10 +233,25 @@ def test_the_revision_moves_one_region_and_the_whole_in_one_year(island: Session
         for code in (*(region.code for region in REGIONS), WHOLE.code)
         for sex, year in itertools.product(("f", "m"), YEARS)
     ]
-    first, second = (load(island, quillmere.CODE, number, asked) for number in (1, 2))
+    first, second = (
+        load(island, quillmere.CODE, number, asked, figures="full") for number in (1, 2)
+    )
     for one in asked:
         before, after = first[one].panel.deaths, second[one].panel.deaths
         if not np.array_equal(before, after):
             assert after.sum() > before.sum()
             moved.add((one.area, one.period))
     assert moved == {("northlade", "2021"), (WHOLE.code, "2021")}
+
+
+def test_the_office_withholds_one_or_two_deaths(island: Session) -> None:
+    asked = [PopulationYear("little-auk", "f", "2021")]
+    shown, full = (
+        load(island, quillmere.CODE, 3, asked, figures=figures)[asked[0]]
+        for figures in ("released", "full")
+    )
+    small = (full.panel.deaths > 0) & (full.panel.deaths < 3)
+    assert small.any()
+    assert shown.withheld_on(shown.panel.grid)[small].all()
+    assert not full.withheld
+    assert shown.panel.deaths.sum() == pytest.approx(full.panel.deaths.sum(), abs=1e-6)
