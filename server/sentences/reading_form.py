@@ -107,7 +107,7 @@ def _across(code: str) -> str:
 
 def units() -> Options:
     return (
-        ("1", _("persons, as they stand")),
+        ("1", _("persons")),
         ("1000", _("thousands")),
         ("1000000", _("millions")),
         ("1/100", _("per 100")),
@@ -316,7 +316,7 @@ def question(key: str, sexes: tuple[str, ...]) -> str:
         "kind": _("what it holds"),
         "marks": _("how numbers are written"),
         "number": _("what the cells count"),
-        "units": _("what is counted in thousands or the like"),
+        "units": _("what figures are counted in"),
         "rate_is": _("whether these are rates or probabilities"),
     }[key]
 
