@@ -83,7 +83,7 @@ def test_lists_and_their_twins_agree(reader: TestClient) -> None:
     (row,) = reader.get("/collections.json").json()["figures"]["collections"]["rows"]
     assert (row["code"], row["edition"], row["areas"]) == ("isle", 1, 3)
     csv = reader.get("/c/isle/editions.csv?table=editions").text.splitlines()
-    assert csv[0] == "edition,made,by,note,standing"
+    assert csv[0] == "edition,made,by,note,did,standing"
     assert csv[1].startswith("1,")
     assert csv[1].endswith(",stands")
 
