@@ -34,6 +34,7 @@ from server.sentences import basis, breaks, names, sharing
 from server.sentences import curves as curves_say
 from server.sentences import models as models_say
 from server.sentences import population_year as say
+from server.sentences import withholding as withholding_say
 from server.sentences.pieces import Piece, Sentence
 from server.sentences.reasons import reason
 from server.sentences.standing import Headline
@@ -41,6 +42,7 @@ from server.sentences.text import _
 from server.store.connect import Session
 from server.store.heading import Heading
 
+POOLED = "almanac-1-3-years"
 LAW = "almanac-1-kannisto"  # what to ask for where the open group is too large
 
 
@@ -310,7 +312,26 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
     behind = Piece(
         curves_say.question(), address(heading.collection.code, heading.edition.number, curves)
     )
-    return (*basis.further(tuple(links), course), (behind,), *_why(found))
+    return (*basis.further(tuple(links), course), (behind,), *_why(found), *_in_full(found))
+
+
+def _in_full(found: Findings) -> tuple[Sentence, ...]:
+    """Where counts are withheld: persons, who need it less, and three years added up."""
+    if not found.loaded.protected:
+        return ()
+    heading, of, asked = found.heading, found.of, found.question
+
+    def link(words: str, one: PopulationYear, settings: str) -> Piece:
+        question = PopulationYearQuestion(one, asked.figures, settings)
+        return Piece(words, address(heading.collection.code, heading.edition.number, question))
+
+    persons = PopulationYear(of.area, "p", of.period)
+    ways = []
+    if of.sex != "p" and found.holdings.all_of(persons, found.settings.years):
+        ways.append(link(names.population("p", found.name), persons, asked.settings))
+    if found.settings.years == 1 and found.holdings.all_of(of, 3):
+        ways.append(link(_("three years added up"), of, POOLED))
+    return withholding_say.ways(ways)
 
 
 def _why(found: Findings) -> tuple[Sentence, ...]:

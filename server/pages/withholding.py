@@ -47,15 +47,18 @@ def caution(*sides: Loaded | None) -> Told:
     known = [side for side in sides if side is not None]
     if not protected(known):
         return None
-    labels = [
-        label
+    ages = {
+        (start, label)
         for side in known
-        for label, gone in zip(
-            side.panel.grid.labels, side.withheld_on(side.panel.grid), strict=True
+        for start, label, gone in zip(
+            side.panel.grid.starts,
+            side.panel.grid.labels,
+            side.withheld_on(side.panel.grid),
+            strict=True,
         )
         if gone
-    ]
-    return say.withheld(list(dict.fromkeys(labels)))
+    }
+    return say.withheld([label for _start, label in sorted(ages)])
 
 
 def _to_print(table: Table) -> Table:

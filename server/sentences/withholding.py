@@ -2,7 +2,9 @@
 
 from collections.abc import Sequence
 
+from server.sentences.basis import in_a_row
 from server.sentences.names import listed
+from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _, n_
 
 Told = tuple[str, str] | None
@@ -44,3 +46,10 @@ def behind(who: Sequence[str]) -> Told:
         " and no further decimals of them are given.",
         who=listed(who, most=MOST),
     )
+
+
+def ways(links: Sequence[Piece]) -> tuple[Sentence, ...]:
+    """Where fewer counts are withheld; nothing where there are no such places."""
+    if not links:
+        return ()
+    return ((*phrase(_("With less withheld: ")), *in_a_row(links), Piece(".")),)

@@ -43,6 +43,9 @@ READ = {
     "account": "/c/quillmere/2/account?of=e0&at=northlade.m.2021&since=1&figures=released"
     "&settings=almanac-2&settings_then=almanac-1",
     "reproduce": "/reproduce",
+    "population-year-withheld": "/c/quillmere/3/population-year"
+    "?of=little-auk.f.2021&figures=released&settings=almanac-1",
+    "policy": "/c/quillmere/policy",
     "methods": "/methods",
     "checks": "/checks",
     "words": "/words",

@@ -90,7 +90,7 @@ def known_words() -> set[str]:
     """Words that are data: names, codes and notes of the collection, and of files."""
     said = [quillmere.OFFICE.name, LOCAL.name, quillmere.NAME, quillmere.CODE, FAULTY]
     said += [quillmere.BASIS.source, quillmere.BASIS.population_date, *quillmere.NOTES]
-    said += [quillmere.BASIS.vintage, quillmere.VINTAGE, *NOTES_OF_BREAKS]
+    said += [quillmere.BASIS.vintage, quillmere.VINTAGE, *NOTES_OF_BREAKS, quillmere.POLICY]
     said += [text for region in (*REGIONS, WHOLE) for text in (region.code, region.name)]
     return set(re.findall(r"[^\W\d_]{2,}", " ".join(said))) | NAMES | SYMBOLS
 

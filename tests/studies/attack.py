@@ -162,6 +162,8 @@ def _told(figures: dict[str, Any]) -> Iterator[tuple[int, float, float]]:
             for key in ("deaths", "there"):
                 if (told := _count(row.get(key))) is not None:
                     yield start, told, told
+            if _count(row.get("deaths")) is not None:
+                continue  # its rate says no more, and may be that of joined ages, or borrowed
             for key in ("mx", "counted"):
                 rate, years = row.get(key), people.get(start)
                 if isinstance(rate, float) and years:
