@@ -54,6 +54,7 @@ def test_columns_that_hold_something(rows: list[tuple[str, ...]]) -> None:
         ("a\tb\n1\t2\n", "\t", True),
         ('"a;b;c;d",e\n"1;2;3;4",5\n', ",", True),
         ("one\n", ",", True),
+        ("t;i;t;le\na;b\n1;2,5\n3;4,5\n", ";", True),
     ],
 )
 def test_the_sign_that_cuts_most_evenly(text: str, sign: str, sure: bool) -> None:

@@ -107,6 +107,15 @@ def test_formulas_are_not_worked_out() -> None:
     assert found == {"formulas_kept", "formula_without_value"}
 
 
+@pytest.mark.parametrize(("heading", "told"), [(1, True), (2, True), (3, False)])
+def test_formulas_above_the_heading_do_not_matter(heading: int, told: bool) -> None:
+    def dated(sheet: Worksheet) -> None:
+        sheet["A2"] = "=NOW()"
+
+    file = layout(xlsx(CELLS, change=dated), "a", Form(heading=heading))
+    assert ("formula_without_value" in {one.key for one in file.found}) == told
+
+
 def test_what_is_merged_hidden_or_empty() -> None:
     def change(sheet: Worksheet) -> None:
         sheet.merge_cells("A2:A3")
