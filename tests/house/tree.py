@@ -27,4 +27,9 @@ def texts() -> Iterator[tuple[str, str]]:
     for path in (*files(), *files(".ci"), *(path for path in loose if path.exists())):
         short = path.relative_to(ROOT).as_posix()
         if path.suffix in written and not short.startswith(outside):
-            yield short, path.read_text(encoding="utf-8")
+            yield short, path.read_text(encoding="utf-8", errors=_errors(short))
+
+
+def _errors(short: str) -> str:
+    """The ugly tables are in other encodings on purpose; everything else is UTF-8."""
+    return "replace" if short.startswith("tests/ugly/") else "strict"
