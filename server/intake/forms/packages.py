@@ -101,7 +101,7 @@ def package(content: bytes) -> Package | Found:
     """A zipped file whose parts may be read, or why not. Nothing is unpacked here."""
     try:
         parts = zipfile.ZipFile(io.BytesIO(content))
-    except (zipfile.BadZipFile, OSError, ValueError, NotImplementedError):
+    except (zipfile.BadZipFile, OSError, ValueError, RuntimeError):  # of versions it cannot read
         return Found("broken_workbook", Fault(values={"part": "the whole"}))
     listed = parts.infolist()
     size = sum(part.file_size for part in listed)
