@@ -22,7 +22,8 @@ def check_upload(session: Session, *, upload_id: int, tell: Tell = untold) -> Re
     """All problems at once, and what the upload would become. Nothing becomes an edition here.
     How far it is, it tells by its stages.
 
-    Raises: Missing; Refused where a file has no mapping yet, or the upload is an edition already.
+    Raises: Missing; Refused where a file has no mapping yet, the upload is an edition already, or
+    what was said of it was changed meanwhile.
     """
     upload = uploads.find(session, upload_id)
     newest = editions.newest_standing(session, upload.collection)
@@ -37,6 +38,7 @@ def check_upload(session: Session, *, upload_id: int, tell: Tell = untold) -> Re
     report = Report.of(parsed)
     tell(2, len(STAGES), STAGES[2])
     with transaction(session):
+        uploads.require_read_so(session, upload)
         uploads.set_report(
             session,
             upload_id,

@@ -82,6 +82,18 @@ def lock(session: Session, upload_id: int) -> Upload:
     return find(session, upload_id)
 
 
+def require_read_so(session: Session, upload: Upload) -> None:
+    """Refuse where the files of a draft are no longer read as when they were checked; nobody else
+    can change that before the transaction ends. Raises: Missing, Refused."""
+    now = lock(session, upload.id)
+    if (now.files, now.basis) != (upload.files, upload.basis):
+        raise Refused(
+            "What was said of upload {upload} was changed while it was being checked. Check it "
+            "once more.",
+            upload=upload.id,
+        )
+
+
 def require_unchanged(session: Session, upload: Upload) -> None:
     """Refuse where a draft is no longer what was read of it; nobody else can change it before the
     transaction ends. Raises: Missing, Refused."""

@@ -1,20 +1,23 @@
 """A draft is mapped and checked; the report is kept with the edition that stood."""
 
 from dataclasses import replace
+from typing import Any
 
 import pytest
-from sqlalchemy.orm import Session
+from sqlalchemy.orm import Session, sessionmaker
 
 from server.accounts.viewer import LOCAL, NotAllowed, Right, Viewer
+from server.actions import check_upload as checking
 from server.actions.check_upload import check_upload
 from server.actions.commit_upload import commit_upload
 from server.actions.discard_upload import discard_upload
 from server.actions.map_upload import map_upload
 from server.actions.receive_upload import receive_upload
 from server.intake.mapping import Mapping
-from server.intake.parsing import READER
+from server.intake.parsing import READER, Parsed
 from server.intake.report import Report
 from server.store import editions, uploads
+from server.store.connect import transaction
 from server.store.errors import Missing, Refused
 from server.store.records import Upload
 from tests.factories import BASIS, COLUMNS, NOON, checked_upload, counts_csv, stored_collection
@@ -120,3 +123,23 @@ def test_who_may_not_upload_may_not_map(session: Session) -> None:
             by=LOCAL,
             now=NOON,
         )
+
+
+def test_a_draft_mapped_anew_while_it_is_checked_gets_no_report_of_the_old_mapping(
+    session: Session, new_session: sessionmaker[Session], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    draft = checked_upload(session, counts_csv())
+    parse = checking.parse
+
+    def overtaken(*handed: Any) -> Parsed:
+        parsed = parse(*handed)
+        with new_session() as other, transaction(other):
+            mappings = {"counts": replace(COLUMNS, whole="isle").to_json()}
+            uploads.set_mapping(other, draft.id, mappings=mappings, basis=BASIS)
+        return parsed
+
+    monkeypatch.setattr(checking, "parse", overtaken)
+    session.rollback()
+    with pytest.raises(Refused, match="changed while it was being checked"):
+        check_upload(session, upload_id=draft.id)
+    assert uploads.find(session, draft.id).report == ""
