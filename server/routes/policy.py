@@ -24,10 +24,15 @@ FIELDS = ("threshold", "persons", "coarse_below", "zeros")
 
 @router.api_route("/c/{collection}/policy", methods=READ, dependencies=[needs(Right.READ)])
 @router.api_route("/c/{collection}/policy.{twin}", methods=READ, dependencies=[needs(Right.READ)])
-def show_policy(request: Request, session: SessionDep, collection: str, twin: str = "") -> Response:
+def show_policy(
+    request: Request, session: SessionDep, viewer: ViewerDep, collection: str, twin: str = ""
+) -> Response:
+    """The policy, or what others would do: how many counts each would withhold tells the counts
+    themselves, so that only those who set policies may try them."""
     known = collections.find(session, code(collection))
     if twin or not request.query_params:
         return show(request, lambda: page.build(session, known.code), tag_parts=(known,), twin=twin)
+    viewer.require(Right.ADMINISTER)
     given = keys(request, *FIELDS)
     try:
         terms = read(given)

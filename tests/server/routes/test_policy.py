@@ -1,7 +1,11 @@
 """The page of a policy: what it withholds, tried and set."""
 
 import pytest
+from fastapi import FastAPI
 from starlette.testclient import TestClient
+
+from server.accounts.viewer import Right, Viewer
+from server.routes.asking import viewer
 
 PLACE = "/c/isle/policy"
 TERMS = {"threshold": "5", "persons": "0", "coarse_below": "0", "zeros": "shown"}
@@ -61,3 +65,12 @@ def test_terms_that_cannot_be_are_refused(
     assert answer.status_code in (409, 422)
     assert said in answer.text
     assert "has no policy" in reader.get(PLACE).text
+
+
+def test_only_those_who_set_policies_may_try_them(isle: FastAPI, reader: TestClient) -> None:
+    """How many counts each threshold withholds tells a count that is withheld."""
+    isle.dependency_overrides[viewer] = lambda: Viewer("a reader", frozenset({Right.READ}))
+    tried = reader.get(PLACE, params=TERMS)
+    assert tried.status_code == 403
+    assert "counts" not in tried.text.partition("<main")[2]
+    assert reader.get(PLACE).status_code == 200
