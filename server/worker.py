@@ -1,6 +1,7 @@
 """The process of one job: its limits first, then the work on a connection of its own."""
 
 import datetime as dt
+import gc
 import json
 import sys
 from pathlib import Path
@@ -12,10 +13,13 @@ from server.store.connect import make_engine, sessions
 from server.store.jobs import JobBook
 from server.store.records import Job
 
+SELDOM = 1_000_000  # new objects between two looks for circles: a job makes many, and ends soon
+
 
 def begin(url: str, language: str, job: Job, megabytes: int) -> None:
     """Do a claimed job; how it ended is written down in the job table."""
     limit(megabytes)
+    gc.set_threshold(SELDOM)
     engine = make_engine(url)
     new_session = sessions(engine)
     book = JobBook(new_session, lambda: dt.datetime.now(dt.UTC))

@@ -90,7 +90,9 @@ def _laid(before: Cells, cells: Cells, handed: Recoded) -> dict[Key, Vector]:
     """Counts handed in go before those made of the base. Persons of the base give way where a sex
     is handed in, since they are its sum with the other."""
     own = {key: cell for key, cell in cells.items() if key not in handed.gone} | handed.made
-    sexes = {replace(key, sex="p") for key in own if key.sex in ("f", "m")}
+    if not before:
+        return own
+    sexes = {key._replace(sex="p") for key in own if key.sex in ("f", "m")}
     return {key: cell for key, cell in before.items() if key not in sexes} | own
 
 

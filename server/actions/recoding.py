@@ -43,16 +43,16 @@ def recoded(cells: Cells, said: Successions) -> Recoded:
         for share in shares:
             if key.measure == COUNTED and not share.whole:
                 continue  # they go along whole with the deaths
-            new = replace(key, area=share.becomes)
+            new = key._replace(area=share.becomes)
             parts[new][key.area] = _part(cell, share)
             if key.measure == DEATHS and not share.whole:
-                counted = cells.get(replace(key, measure=COUNTED), cell)
-                parts[replace(new, measure=COUNTED)][key.area] = counted
+                counted = cells.get(key._replace(measure=COUNTED), cell)
+                parts[new._replace(measure=COUNTED)][key.area] = counted
     made = {}
     for new, found in sorted(parts.items()):
         codes = said.before(new.area, new.period)
         if new.measure == COUNTED:
-            deaths = parts[replace(new, measure=DEATHS)]
+            deaths = parts[new._replace(measure=DEATHS)]
             found = {code: found.get(code, deaths[code]) for code in deaths}
         if lacking := [code for code in codes if code not in found]:
             _require_optional(new, lacking)
@@ -82,7 +82,7 @@ def _unshared(key: Key) -> Refused:
 
 
 def _summed_anew(key: Key, cells: Cells) -> bool:
-    return key.sex == "p" and all(replace(key, sex=sex) in cells for sex in ("f", "m"))
+    return key.sex == "p" and all(key._replace(sex=sex) in cells for sex in ("f", "m"))
 
 
 def _require_optional(new: Key, lacking: list[str]) -> None:

@@ -3,10 +3,11 @@
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, replace
 from functools import reduce
+from typing import TypeVar
 
 import numpy as np
 
-from engine.ages import AgeGrid
+from engine.ages import AgeGrid, Array
 from server.store.areas import in_tree_order
 from server.store.errors import Refused
 from server.store.records import ALL_OF_IT, Area, Key, Taking, Vector
@@ -14,6 +15,7 @@ from server.store.records import ALL_OF_IT, Area, Key, Taking, Vector
 Cells = Mapping[Key, Vector]
 Slice = tuple[str, str, str, str]  # sex, period, measure, cause: what is summed over areas
 Slices = dict[Slice, Vector]
+Of = TypeVar("Of", Key, Slice)
 Boundaries = Mapping[str, tuple[str, ...]]
 NO_BOUNDARIES: Boundaries = {}
 DEATHS, COUNTED = "deaths", "counted_deaths"
@@ -127,9 +129,11 @@ def totalled(
     standing = {key: cell for key, cell in base.items() if key not in gone} | own
     made = _persons(own, standing)
     standing.update(made)
+    among = {part for whole in summed for part in parts[whole]}
     by_area: dict[str, dict[Slice, Vector]] = {}
-    for key, cell in standing.items():
-        by_area.setdefault(key.area, {})[_slice(key)] = cell
+    for key, cell in standing.items() if among else ():
+        if key.area in among:
+            by_area.setdefault(key.area, {})[_slice(key)] = cell
     for whole in reversed(areas):  # parts before their whole
         if whole.code in summed:
             sums = _sums({part: by_area.get(part, {}) for part in parts[whole.code]}, boundaries)
@@ -158,7 +162,7 @@ def totalled(
 def _outdated(base: Cells, new: Cells) -> set[Key]:
     """Deaths as counted whose deaths have come anew, and all of them counted."""
     counted = (key for key in base if key.measure == COUNTED)
-    return {key for key in counted if key not in new and replace(key, measure=DEATHS) in new}
+    return {key for key in counted if key not in new and key._replace(measure=DEATHS) in new}
 
 
 def total(cells: list[Vector]) -> Vector:
@@ -167,8 +171,38 @@ def total(cells: list[Vector]) -> Vector:
     values = cells[0].grid.regroup(cells[0].values, grid)
     for cell in cells[1:]:
         values = values + cell.grid.regroup(cell.values, grid)
-    status = "provisional" if any(cell.status == "provisional" for cell in cells) else "final"
-    return Vector(status, grid, values, any(cell.estimated for cell in cells))
+    return _of_parts(cells, grid, values)
+
+
+def _of_parts(cells: list[Vector], grid: AgeGrid, values: Array) -> Vector:
+    status = "final"
+    estimated = False
+    for cell in cells:
+        if cell.status == "provisional":
+            status = "provisional"
+        estimated |= cell.estimated
+    return Vector(status, grid, values, estimated)
+
+
+def totals(parts: Mapping[Of, list[Vector]]) -> dict[Of, Vector]:
+    """`total` of many; those whose parts share a grid are added up together, in the order of their
+    parts as one alone is, so that each comes out the same to the last bit."""
+    alike: dict[tuple[int, frozenset[int]], list[Of]] = {}
+    for key in parts:
+        grids = frozenset(id(cell.grid) for cell in parts[key])
+        alike.setdefault((len(parts[key]), grids), []).append(key)
+    made: dict[Of, Vector] = {}
+    for (count, grids), keys in alike.items():
+        if len(grids) > 1:
+            made.update((key, total(parts[key])) for key in keys)
+            continue
+        values = np.array([parts[key][0].values for key in keys])
+        for at in range(1, count):
+            values = values + np.array([parts[key][at].values for key in keys])
+        grid = parts[keys[0]][0].grid
+        summed = zip(keys, values, strict=True)
+        made.update((key, _of_parts(parts[key], grid, row)) for key, row in summed)
+    return {key: made[key] for key in parts}
 
 
 def _require_sum(key: Key, handed: Vector, made: Vector, parts: int) -> None:
@@ -193,10 +227,14 @@ def _require_sum(key: Key, handed: Vector, made: Vector, parts: int) -> None:
 
 def _persons(own: Cells, standing: Cells) -> dict[Key, Vector]:
     """Persons anew wherever women or men were handed in. Raises: Refused where persons were."""
-    made: dict[Key, Vector] = {}
-    for persons in dict.fromkeys(replace(key, sex="p") for key in own):
-        women, men = (standing.get(replace(persons, sex=sex)) for sex in ("f", "m"))
-        if women and men and persons in own:
+    parts: dict[Key, list[Vector]] = {}
+    for area, period, measure, cause in dict.fromkeys((key.area, *key[2:]) for key in own):
+        persons = Key(area, "p", period, measure, cause)
+        women = standing.get(Key(area, "f", period, measure, cause))
+        men = standing.get(Key(area, "m", period, measure, cause))
+        if women is None or men is None:
+            continue
+        if persons in own:
             raise Refused(
                 "Persons were handed in for {area} in {period}, but the edition that stands has "
                 "women and men, and persons are their sum. Hand in women and men, or replace the "
@@ -204,33 +242,36 @@ def _persons(own: Cells, standing: Cells) -> dict[Key, Vector]:
                 area=persons.area,
                 period=persons.period,
             )
-        if women and men and persons.measure != COUNTED:
-            made[persons] = total([women, men])
-        beside = [standing.get(replace(persons, sex=sex, measure=COUNTED)) for sex in ("f", "m")]
-        if women and men and persons.measure == DEATHS and any(beside):
-            both = list(zip((women, men), beside, strict=True))
-            made[replace(persons, measure=COUNTED)] = _counted(both)
-    return made
+        if measure != COUNTED:
+            parts[persons] = [women, men]
+        beside = [standing.get(Key(area, sex, period, COUNTED, cause)) for sex in ("f", "m")]
+        if measure == DEATHS and any(beside):
+            both = zip((women, men), beside, strict=True)
+            parts[persons._replace(measure=COUNTED)] = _counted(both)
+    return totals(parts)
 
 
 def _sums(parts: dict[str, Slices], boundaries: Boundaries) -> Slices:
     """Sums of the slices that no part lacks; but for parts that have ended or not yet begun."""
     held = {code: [period for _, period, *_ in part] for code, part in parts.items()}
     absent = {code: _absent(boundaries.get(code, ()), held[code]) for code in parts}
-    sums: Slices = {}
+    summands: dict[Slice, list[Vector]] = {}
     for which in sorted(set[Slice]().union(*parts.values())):
         sex, period, measure, cause = which
         lacking = [code for code, part in parts.items() if which not in part]
         if measure == COUNTED or not all(absent[code](period) for code in lacking):
             continue
         there = [part for code, part in parts.items() if code not in lacking]
-        sums[which] = total([part[which] for part in there])
+        summands[which] = [part[which] for part in there]
         beside = (sex, period, COUNTED, cause)
         if measure == DEATHS and any(beside in part for part in there):
-            counted = _counted([(part[which], part.get(beside)) for part in there])
-            # parts of one split carry the same deaths: together no more than there are
-            most = np.minimum(counted.values, sums[which].values)
-            sums[beside] = replace(counted, values=most)
+            summands[beside] = _counted((part[which], part.get(beside)) for part in there)
+    sums = totals(summands)
+    for sex, period, measure, cause in summands:
+        if measure == COUNTED:  # parts of one split carry the same deaths: together no more
+            counted, deaths = sums[sex, period, COUNTED, cause], sums[sex, period, DEATHS, cause]
+            most = np.minimum(counted.values, deaths.values)
+            sums[sex, period, COUNTED, cause] = replace(counted, values=most)
     return sums
 
 
@@ -242,9 +283,9 @@ def _absent(years: Iterable[str], held: list[str]) -> Callable[[str], bool]:
     return lambda period: bool(held) and not begins <= period < ends
 
 
-def _counted(parts: list[tuple[Vector, Vector | None]]) -> Vector:
+def _counted(parts: Iterable[tuple[Vector, Vector | None]]) -> list[Vector]:
     """Deaths as they were counted, where `deaths` beside them may be shared out."""
-    return total([deaths if counted is None else counted for deaths, counted in parts])
+    return [deaths if counted is None else counted for deaths, counted in parts]
 
 
 def _parts(areas: Iterable[Area]) -> dict[str, list[str]]:

@@ -208,7 +208,7 @@ def _of_the_same_people(cells: Cells, found: Mapping[Key, Hidden]) -> dict[Key, 
     them that is counted at the ages shown."""
     out: dict[Key, Hidden] = {}
     for key, hidden in found.items():
-        beside = replace(key, measure="counted_deaths")
+        beside = key._replace(measure="counted_deaths")
         if key.measure != "deaths" or beside not in cells:
             continue
         counted, deaths = cells[beside], cells[key]

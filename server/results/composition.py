@@ -104,7 +104,7 @@ def _recoded(cells: Cells, said: Successions) -> dict[Key, Vector]:
         for share in one.shares_of(key):
             at = np.searchsorted(share.grid.starts, cell.grid.starts, side="right") - 1
             part = cell.values * np.array(share.values)[at]
-            new = replace(key, area=share.becomes)
+            new = key._replace(area=share.becomes)
             parts.setdefault(new, []).append(replace(cell, values=part))
     return {key: _total(found) for key, found in parts.items()}
 
@@ -114,10 +114,10 @@ def _summed(cells: Cells, codes: Sequence[str], area: str) -> dict[Key, Vector]:
     found: dict[Key, list[Vector]] = {}
     for key in cells:
         if key.area == codes[0]:
-            several = [cells.get(replace(key, area=code)) for code in codes]
+            several = [cells.get(key._replace(area=code)) for code in codes]
             held = [one for one in several if one is not None]
             if len(held) == len(codes):
-                found[replace(key, area=area)] = held
+                found[key._replace(area=area)] = held
     return {key: _total(several) for key, several in found.items()}
 
 

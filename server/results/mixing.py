@@ -211,7 +211,7 @@ def _read_otherwise(
     leaves = set(sides.composition.now)
     found: list[bool] = []
     for key, versions in made.items():
-        summed = key.sex == "p" and {replace(key, sex=sex) for sex in ("f", "m")} <= made.keys()
+        summed = key.sex == "p" and {key._replace(sex=sex) for sex in ("f", "m")} <= made.keys()
         if key.measure not in COUNTS[kind] or key.area not in leaves or summed:
             continue
         then, now = (_origin(versions, number) for number in sides.numbers)

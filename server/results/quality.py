@@ -1,7 +1,7 @@
 """How good the counts of an edition are: what is there, what the checks find in it, indices."""
 
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from functools import reduce
 from typing import ClassVar, Self
 from urllib.parse import urlencode
@@ -120,7 +120,7 @@ def _without_sums(cells: Cells) -> Cells:
     return {
         key: cell
         for key, cell in cells.items()
-        if key.sex != "p" or not all(replace(key, sex=sex) in cells for sex in ("f", "m"))
+        if key.sex != "p" or not all(key._replace(sex=sex) in cells for sex in ("f", "m"))
     }
 
 

@@ -6,8 +6,8 @@ A digest covers codes, status, age starts and numbers, never row ids, dates, peo
 import hashlib
 import json
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
 from functools import lru_cache
+from typing import NamedTuple
 
 import numpy as np
 
@@ -45,8 +45,7 @@ def starts(grid: AgeGrid) -> str:
     return grid.code
 
 
-@dataclass(frozen=True, slots=True)
-class Packed:
+class Packed(NamedTuple):
     """A schedule as it is stored."""
 
     digest: bytes  # 32 bytes
@@ -55,30 +54,49 @@ class Packed:
 
 def packed(cells: Mapping[Key, Vector]) -> dict[Key, Packed]:
     """Many schedules at once: those of one grid are made canonical together."""
-    by_grid: dict[AgeGrid, list[Key]] = {}
-    for key, cell in cells.items():
-        by_grid.setdefault(cell.grid, []).append(key)
     found: dict[Key, Packed] = {}
-    for grid, keys in by_grid.items():
+    for grid, keys in by_grid(cells).items():
         numbers = np.array([cells[key].values for key in keys], "<f8")
         if numbers.shape != (len(keys), len(grid)):
             raise ValueError(f"vectors on {len(grid)} age groups have the shape {numbers.shape}")
         content, width = _canonical(numbers).tobytes(), 8 * len(grid)
+        code = starts(grid)
         for place, key in enumerate(keys):
             vector = content[place * width : (place + 1) * width]
-            found[key] = Packed(_of_schedule(key, cells[key], vector), vector)
+            cell = cells[key]
+            digest = _of_schedule(key, cell.status, code, cell.estimated, vector)
+            found[key] = Packed(digest, vector)
+    return found
+
+
+def by_grid(cells: Mapping[Key, Vector]) -> dict[AgeGrid, list[Key]]:
+    """Keys by the grids of their schedules, most of which share the very object: to tell that is
+    quicker than to compare the ages."""
+    same: dict[int, list[Key]] = {}
+    for key, cell in cells.items():
+        same.setdefault(id(cell.grid), []).append(key)
+    found: dict[AgeGrid, list[Key]] = {}
+    for keys in same.values():
+        found.setdefault(cells[keys[0]].grid, []).extend(keys)
     return found
 
 
 def of_schedule(key: Key, vector: Vector) -> bytes:
     """Digest of one schedule, 32 bytes."""
-    return _of_schedule(key, vector, canonical(vector.values).tobytes())
+    tail = canonical(vector.values).tobytes()
+    return _of_schedule(key, vector.status, starts(vector.grid), vector.estimated, tail)
 
 
-def _of_schedule(key: Key, vector: Vector, tail: bytes) -> bytes:
-    codes = ("schedule", key.area, key.sex, key.period, key.measure, key.cause)
-    marks = ("estimated",) if vector.estimated else ()
-    return _digest(*codes, vector.status, starts(vector.grid), *marks, tail=tail)
+def _of_schedule(key: Key, status: str, grid: str, estimated: bool, tail: bytes) -> bytes:
+    area, sex, period, measure, cause = key
+    end = _what(measure, cause, status, grid, estimated)
+    return _hashed(f'"schedule", {_quoted(area)}, {_quoted(sex)}, {_quoted(period)}, {end}', tail)
+
+
+@lru_cache(maxsize=4096)
+def _what(measure: str, cause: str, status: str, grid: str, estimated: bool) -> str:
+    """The end of the words of a schedule, which thousands share."""
+    return _words(measure, cause, status, grid, *(("estimated",) if estimated else ()))
 
 
 def of_area(area: Area) -> bytes:
@@ -108,10 +126,17 @@ def of_edition(parts: Iterable[bytes]) -> str:
     return hashlib.sha256(b"".join(sorted(parts))).hexdigest()
 
 
-def _digest(*words: str, tail: bytes = b"") -> bytes:
+def _digest(*words: str) -> bytes:
+    return _hashed(_words(*words), b"")
+
+
+def _hashed(words: str, tail: bytes) -> bytes:
     # a list in JSON keeps the words apart whatever stands in them, and has no zero byte
-    head = ", ".join(map(_quoted, words))
-    return hashlib.sha256(b"[%b]\0%b" % (head.encode(), tail)).digest()
+    return hashlib.sha256(b"[%b]\0%b" % (words.encode(), tail)).digest()
+
+
+def _words(*words: str) -> str:
+    return ", ".join(map(_quoted, words))
 
 
 @lru_cache(maxsize=4096)

@@ -52,9 +52,9 @@ class Prepared:
         """What the edition does to the schedules of its base."""
         altered = self.schedules.altered
         restated = sum(
-            altered.get(rows.of(key)) == digests.of_schedule(key, replace(cell, status=status))
-            for key, cell in self.change.cells.items()
-            if rows.of(key) in altered
+            altered[key] == digests.of_schedule(key, replace(cell, status=status))
+            for key, cell in (self.change.cells.items() if altered else ())
+            if key in altered
             for status in STATUSES
             if status != cell.status
         )
@@ -113,13 +113,13 @@ def prepare(session: Session, change: Change) -> Prepared:
         )
 
     packed = digests.packed(change.cells)
-    cells = {rows.of(key): one.digest for key, one in packed.items()}
+    cells: dict[tuple[str, ...], bytes] = {key: one.digest for key, one in packed.items()}
     return Prepared(
         change,
         packed,
         collection,
         against,
-        schedules=compared(Schedule, cells, frozenset(map(rows.of, change.ended))),
+        schedules=compared(Schedule, cells, change.ended),
         areas=compared(
             AreaRange,
             {(area.code,): digests.of_area(area) for area in change.areas},

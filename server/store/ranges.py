@@ -96,11 +96,27 @@ def apply(
     for ids in _steps(part.again):
         copies = select(*columns, literal(number)).where(table.id.in_(ids))
         session.execute(insert(table).from_select(names, copies))
-    own = {"collection_id": collection_id, "first": number}
-    for rows in _steps(added):
-        # past the mapped classes, which would cost three times as much
-        plain = cast(Table, table.__table__)
-        session.connection().execute(insert(plain), [{**row, **own} for row in rows])
+    _insert(session, table, {"collection_id": collection_id, "first": number}, added)
+
+
+def _insert(
+    session: Session, table: Content, own: Mapping[str, Any], rows: Iterable[Mapping[str, Any]]
+) -> None:
+    """Add rows, each with the values `own`: a column at a time made what the driver takes, which
+    costs a fifth of having every value of every row looked at."""
+    connection = session.connection()
+    plain, dialect = cast(Table, table.__table__), connection.dialect
+    for step in _steps(rows):
+        columns = {name: [row[name] for row in step] for name in step[0]}
+        columns |= {name: [value] * len(step) for name, value in own.items()}
+        for name, values in columns.items():
+            if made := plain.c[name].type.dialect_impl(dialect).bind_processor(dialect):
+                columns[name] = [made(value) for value in values]
+        written = insert(plain).compile(dialect=dialect, column_keys=list(columns))
+        order = written.positiontup  # None: the driver takes its values by name
+        across = list(zip(*(columns[name] for name in order or columns), strict=True))
+        by_name = [] if order else [dict(zip(columns, row, strict=True)) for row in across]
+        connection.exec_driver_sql(str(written), across if order else by_name)
 
 
 def _rows(

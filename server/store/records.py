@@ -3,6 +3,7 @@
 import datetime as dt
 from collections.abc import Mapping
 from dataclasses import dataclass
+from typing import NamedTuple
 
 from engine.ages import AgeGrid, Array
 
@@ -18,9 +19,9 @@ BREAKS = ("boundary", "coding", "definition", "population", "shock")
 STATUSES = ("final", "provisional")
 
 
-@dataclass(frozen=True, slots=True, order=True)
-class Key:
-    """Which schedule: one vector over age."""
+class Key(NamedTuple):
+    """Which schedule: one vector over age. A plain tuple, since a large edition looks up, compares
+    and sorts them by the million."""
 
     area: str
     sex: str  # f, m, p

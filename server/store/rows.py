@@ -19,20 +19,19 @@ from server.store.tables import AreaName, BreakRange, Grid
 Rows = Iterator[Mapping[str, Any]]
 
 
-def of(key: Key) -> RowKey:
-    """The key in the order of the table's own."""
-    return (key.area, key.sex, key.period, key.measure, key.cause)
-
-
 def schedules(
     session: Session,
     added: Mapping[RowKey, bytes],
     change: Change,
     packed: Mapping[Key, digests.Packed],
 ) -> Rows:
-    cells = {key: cell for key, cell in change.cells.items() if of(key) in added}
-    grids = _grids(session, {digests.starts(cell.grid) for cell in cells.values()})
-    for key, cell in cells.items():
+    """In the order of their keys: an index is filled more quickly from one end to the other."""
+    cells = {key: cell for key, cell in change.cells.items() if key in added}
+    by_grid = digests.by_grid(cells)
+    grids = _grids(session, {digests.starts(grid) for grid in by_grid})
+    grid_id = {key: grids[digests.starts(grid)] for grid, keys in by_grid.items() for key in keys}
+    for key in sorted(cells):
+        cell, (digest, vector) = cells[key], packed[key]
         yield {
             "area": key.area,
             "sex": key.sex,
@@ -42,9 +41,9 @@ def schedules(
             "period_start": start_of(key.period),
             "status": cell.status,
             "estimated": cell.estimated,
-            "grid_id": grids[digests.starts(cell.grid)],
-            "vector": packed[key].vector,
-            "digest": packed[key].digest,
+            "grid_id": grid_id[key],
+            "vector": vector,
+            "digest": digest,
         }
 
 

@@ -1,7 +1,6 @@
 """Checks of the counts that are moved to other codes: none is lost, none stands twice."""
 
 from collections.abc import Iterable, Iterator
-from dataclasses import replace
 
 from engine.ages import AgeGrid
 from server.intake.checks.check import Check
@@ -113,7 +112,7 @@ def _unshared(said: Said) -> Iterator[Fault]:
     found: dict[tuple[str, str, str], set[str]] = {}
     for key in held:
         one = meant.find(key.area, key.period)
-        sexes = [replace(key, sex=sex) for sex in ("f", "m")]
+        sexes = [key._replace(sex=sex) for sex in ("f", "m")]
         summed = key.sex == "p" and all(sex in held for sex in sexes)
         if one and one.shares and not summed and not one.shares_of(key):
             found.setdefault((key.area, key.measure, key.sex), set()).add(key.period)

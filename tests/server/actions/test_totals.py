@@ -212,7 +212,7 @@ def test_a_schedule_of_an_area_that_is_not_listed_is_an_error_of_the_program() -
 def fewer(handed: dict[Key, Vector], *keys: Key, by: float = 1.25) -> dict[Key, Vector]:
     """With deaths as counted beside some of the deaths."""
     counted = {
-        replace(key, measure="counted_deaths"): replace(handed[key], values=handed[key].values / by)
+        key._replace(measure="counted_deaths"): replace(handed[key], values=handed[key].values / by)
         for key in keys
     }
     return handed | counted

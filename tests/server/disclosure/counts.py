@@ -1,7 +1,5 @@
 """Small countries whose counts must be protected: drawn deaths, few in most cells."""
 
-from dataclasses import replace
-
 import numpy as np
 
 from engine.ages import AgeGrid
@@ -49,7 +47,7 @@ def add(cells: Cells, parents: dict[str, str], key: Key, values: np.ndarray) -> 
     area = key.area
     while area:
         for sex in (key.sex, "p"):
-            one = replace(key, area=area, sex=sex)
+            one = key._replace(area=area, sex=sex)
             before = cells[one].values if one in cells else 0.0
             cells[one] = Vector("final", GRID, before + values)
         area = parents[area]

@@ -194,7 +194,7 @@ def test_deaths_before_28_days_are_withheld_where_few_died_later() -> None:
     cells = drawn(FLAT, seed=0, people=4e5)
     for key, vector in list(cells.items()):
         if key.measure == "deaths":
-            births = replace(key, measure="neonatal_deaths")
+            births = key._replace(measure="neonatal_deaths")
             few = np.array([max(vector.values[0] - 2, 0.0)])
             cells[births] = Vector("final", type(GRID)((0,)), few)
     made = mask(FLAT, cells, TERMS).mask

@@ -51,7 +51,7 @@ def test_each_area_sex_and_year_gets_its_vectors() -> None:
     assert cell.grid == GRID
     assert cell.values.tolist() == [float(str(row["deaths"])) for row in WOMEN]
     assert cell.status == "final"
-    people = parsed.cells[replace(WOMEN_2012, measure="person_years")]
+    people = parsed.cells[WOMEN_2012._replace(measure="person_years")]
     assert people.values.tolist() == [float(str(row["population"])) for row in WOMEN]
 
 
@@ -80,7 +80,7 @@ def test_the_same_bytes_give_the_same_content() -> None:
 
 def test_counts_are_rounded_to_six_decimals() -> None:
     table = setting(SOUND, WOMEN[:1], population="950.12345678")
-    values = parse([counts(table)]).cells[replace(WOMEN_2012, measure="person_years")].values
+    values = parse([counts(table)]).cells[WOMEN_2012._replace(measure="person_years")].values
     assert values[0] == 950.123457
     zero = parse([counts(setting(SOUND, WOMEN[:1], deaths="-0"))]).cells[WOMEN_2012].values[0]
     assert str(zero) == "0.0"
@@ -161,7 +161,7 @@ def test_unlike_grids_meet_in_the_finest_common_one() -> None:
     key = Key("a", "f", "2014", "deaths")
     assert parsed.cells[key].grid == AgeGrid((0, 5, 10))
     assert parsed.cells[key].values.tolist() == [6, 3, 3]
-    assert parsed.cells[replace(key, measure="person_years")].values.tolist() == [90, 90, 180]
+    assert parsed.cells[key._replace(measure="person_years")].values.tolist() == [90, 90, 180]
 
 
 def test_persons_beside_both_sexes_are_not_kept() -> None:
@@ -209,7 +209,7 @@ def test_a_whole_that_is_summed_is_not_kept() -> None:
 def test_a_whole_that_is_delivered_is_kept() -> None:
     parsed = parse([counts(SOUND + WHOLE, whole="isle", delivered=("isle",))])
     assert parsed.areas[0] == Area("isle", "", delivered=True)
-    assert parsed.cells[replace(WOMEN_2012, area="isle")].values[0] == 23 + 33
+    assert parsed.cells[WOMEN_2012._replace(area="isle")].values[0] == 23 + 33
 
 
 def test_a_whole_without_rows_is_still_named() -> None:

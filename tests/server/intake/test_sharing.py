@@ -289,7 +289,7 @@ def test_sums_are_kept_whatever_the_order_of_rows(stated, sexless, nowhere, unkn
     for key, cell in parsed.cells.items():
         if key.measure == "deaths":
             after[key.period] += int(np.rint(cell.values * 1e6).astype(np.int64).sum())
-            counted = parsed.cells.get(replace(key, measure="counted_deaths"), cell)
+            counted = parsed.cells.get(key._replace(measure="counted_deaths"), cell)
             assert (counted.values <= cell.values).all()
             assert_array_equal(counted.values, np.round(counted.values))
     assert after == {year: 10**6 * count for year, count in before.items()}

@@ -174,7 +174,7 @@ def test_a_gap_on_both_sides_is_no_change_and_one_on_either_is() -> None:
 def test_a_year_is_counted_once_whatever_levels_hold_it() -> None:
     parts = cells("ab", years=(2001,))
     persons = {
-        replace(key, area="w", sex="p"): replace(cell, values=cell.values * 4)
+        key._replace(area="w", sex="p"): replace(cell, values=cell.values * 4)
         for key, cell in parts.items()
         if key.area == "a" and key.sex == "f"
     }

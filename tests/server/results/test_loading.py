@@ -228,18 +228,18 @@ def test_deaths_as_counted_come_with_the_deaths(session: Session) -> None:
     women = Key("a", "f", "2001", "deaths")
     vector = handed[women]
     counted = replace(vector, values=vector.values / 2)
-    handed[replace(women, measure="counted_deaths")] = counted
+    handed[women._replace(measure="counted_deaths")] = counted
     stored_edition(session, handed)
     found = load(session, "saltmarsh", 1, [of("a.f.2001"), of("a.m.2001"), of("a.p.2001")])
     panel = found[of("a.f.2001")].panel
     assert_array_equal(panel.counts, vector.values / 2)
     assert_array_equal(panel.worth, np.full(4, 2.0))
     assert found[of("a.m.2001")].panel.counted is None
-    men = handed[replace(women, sex="m")].values
+    men = handed[women._replace(sex="m")].values
     assert_array_equal(found[of("a.p.2001")].panel.counts, vector.values / 2 + men)
     two = Beside(years=2)
     pooled = load(session, "saltmarsh", 1, [of("a.f.2001")], two)[of("a.f.2001")].panel
-    before = handed[replace(women, period="2000")].values
+    before = handed[women._replace(period="2000")].values
     assert_array_equal(pooled.counts, vector.values / 2 + before)
 
 
@@ -257,7 +257,7 @@ def test_of_a_withheld_group_no_counted_deaths_are_told() -> None:
     deaths, people = handed
     hidden = replace(handed[deaths], withheld=(1,))
     known = replace(handed[deaths], values=handed[deaths].values / 2)
-    counted = replace(deaths, measure="counted_deaths")
+    counted = deaths._replace(measure="counted_deaths")
     found = assembled(
         {deaths: hidden, people: handed[people], counted: known}, [of("a.f.2001")], Beside()
     )

@@ -54,7 +54,7 @@ def test_every_code_the_status_and_the_ages_are_covered() -> None:
         _of(1.0, 2.0, 3.0, status="provisional"),
         _of(1.0, 2.0, 3.0, grid=AgeGrid((0, 1, 6))),
         *(
-            _of(1.0, 2.0, 3.0, key=replace(KEY, **{name: "x"}))
+            _of(1.0, 2.0, 3.0, key=KEY._replace(**{name: "x"}))
             for name in ("area", "sex", "period", "measure", "cause")
         ),
         _of(1.0, 3.0, 2.0),
