@@ -13,6 +13,7 @@ from server.intake.forms.found import Found
 from server.intake.problems import Fault
 
 ZIP = b"PK\x03\x04"
+LISTED = b"PK\x01\x02"  # stands before each part in the list of all, which is read at once
 MOST_PARTS = 5_000
 MOST_XML = 600_000_000  # bytes of all parts; they are read piece by piece, and never kept
 MOST_RATIO, SMALL = 250, 8_000_000  # a part is packed no tighter, unless it is small
@@ -99,6 +100,8 @@ def _refuse(*_: object) -> None:
 
 def package(content: bytes) -> Package | Found:
     """A zipped file whose parts may be read, or why not. Nothing is unpacked here."""
+    if content.count(LISTED) > MOST_PARTS:
+        return Found("broken_workbook", Fault(values={"part": "the list of its parts"}))
     try:
         parts = zipfile.ZipFile(io.BytesIO(content))
     except (zipfile.BadZipFile, OSError, ValueError, RuntimeError):  # of versions it cannot read
@@ -108,11 +111,11 @@ def package(content: bytes) -> Package | Found:
     if size > MOST_XML:
         values = {"packed": len(content), "most": MOST_XML}
         return Found("package_too_large", Fault(values=values))
-    for part in listed[:MOST_PARTS]:
+    for part in listed:
         if part.file_size > SMALL and part.file_size > MOST_RATIO * max(part.compress_size, 1):
             values = {"packed": part.compress_size, "size": part.file_size}
             return Found("packed_too_tightly", Fault(values=values))
     closed = any(part.flag_bits & 1 or part.compress_type not in KINDS for part in listed)
-    if closed or len(listed) > MOST_PARTS:
+    if closed:
         return Found("broken_workbook", Fault(values={"part": "the whole"}))
     return Package(parts)

@@ -7,6 +7,8 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from server.intake.forms import packages
+from server.intake.forms.found import Found
 from server.intake.mapping import Form, Mapping
 from server.intake.parsing import Handed, parse
 from server.intake.reading import read
@@ -135,3 +137,15 @@ def test_any_bytes_are_proposed_a_form(content: bytes, head: bytes) -> None:
     reading = read(head + content, "a")
     assert reading.problems or reading.row_count
     assert all(question.proposal for question in reading.questions)
+
+
+def test_a_long_list_of_parts_is_not_read(monkeypatch: pytest.MonkeyPatch) -> None:
+    """A million parts of nothing would take ten seconds, and a record in memory each."""
+
+    def opened(*_: object) -> None:
+        raise AssertionError
+
+    monkeypatch.setattr(packages.zipfile, "ZipFile", opened)
+    found = packages.package(packages.ZIP + packages.LISTED * (packages.MOST_PARTS + 1))
+    assert isinstance(found, Found)
+    assert found.key == "broken_workbook"
