@@ -44,8 +44,8 @@ def made_of(parsed: Parsed, taking: Taking, base: Base) -> Made:
     cells, areas = taken(parsed, taking, base.areas)
     said = parsed.successions
     old = base.load(Selection(areas=said.codes, cause=None)) if said and base.areas else {}
-    before = recoded(old, said)
-    cells = _laid(before.made, cells, recoded(cells, said))
+    before, own = recoded(old, said), _own(cells, recoded(cells, said))
+    cells = _laid(before.made, own, taking)
     known = {area.code: area for area in (*base.areas, *areas)}
     areas, ended = listed(areas, said, {*old.keys() - before.gone, *cells}, known)
     kept = tuple(area for area in base.areas if area.code not in ended)
@@ -64,6 +64,7 @@ def made_of(parsed: Parsed, taking: Taking, base: Base) -> Made:
         areas,
         base_areas=kept,
         load=load,
+        handed=own,
         taking=taking,
         boundaries=_boundaries((*(one for one in base.breaks if one not in gone), *new)),
     )
@@ -86,14 +87,19 @@ def _boundaries(held: Iterable[Break]) -> dict[str, tuple[str, ...]]:
     return found
 
 
-def _laid(before: Cells, cells: Cells, handed: Recoded) -> dict[Key, Vector]:
-    """Counts handed in go before those made of the base. Persons of the base give way where a sex
-    is handed in, since they are its sum with the other."""
-    own = {key: cell for key, cell in cells.items() if key not in handed.gone} | handed.made
+def _own(cells: Cells, handed: Recoded) -> dict[Key, Vector]:
+    """Counts handed in, under the codes that theirs have become."""
+    return {key: cell for key, cell in cells.items() if key not in handed.gone} | handed.made
+
+
+def _laid(before: Cells, own: dict[Key, Vector], taking: Taking) -> dict[Key, Vector]:
+    """Counts handed in go before those made of the base, of which the same gives way to them as of
+    the base. Persons give way where a sex is handed in, since they are its sum with the other."""
     if not before:
         return own
-    sexes = {key._replace(sex="p") for key in own if key.sex in ("f", "m")}
-    return {key: cell for key, cell in before.items() if key not in sexes} | own
+    gone = totals.giving_way(before, own, taking)
+    gone |= {key._replace(sex="p") for key in own if key.sex in ("f", "m")}
+    return {key: cell for key, cell in before.items() if key not in gone} | own
 
 
 def _carried(stood: Iterable[Break], said: Successions, ended: Iterable[str]) -> tuple[Break, ...]:

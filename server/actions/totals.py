@@ -29,24 +29,25 @@ class Totalled:
 
 
 def laid_over(
-    handed: Cells,
+    new: Cells,
     areas: Iterable[Area],
     *,
     base_areas: tuple[Area, ...],
     load: Callable[[tuple[str, ...] | None], Cells],
+    handed: Cells,
     taking: Taking = ALL_OF_IT,
     boundaries: Boundaries = NO_BOUNDARIES,
 ) -> Totalled:
-    """What was handed in with its totals, over a base of which some gives way to it; `load` gives
-    the base's schedules of some periods (None: of all). Raises: Refused, as `merged` and `totalled`
-    do."""
+    """What is new with its totals, over a base of which some gives way to what of it was `handed`
+    in; `load` gives the base's schedules of some periods (None: of all). Raises: Refused, as
+    `merged` and `totalled` do."""
     listed = merged(areas, base_areas)
     every_year = taking.gives_way == "areas" or bool(boundaries)
-    needed = None if every_year else periods_needed(handed, listed, base_areas)
+    needed = None if every_year else periods_needed(new, listed, base_areas)
     base = load(needed) if base_areas else {}
     gone = giving_way(base, handed, taking)
     kept = {key: cell for key, cell in base.items() if key not in gone}
-    made = totalled(handed, listed, base=kept, base_areas=base_areas, boundaries=boundaries)
+    made = totalled(new, listed, base=kept, base_areas=base_areas, boundaries=boundaries)
     return replace(made, ended=made.ended | (gone - made.cells.keys()))
 
 
@@ -129,6 +130,8 @@ def totalled(
     standing = {key: cell for key, cell in base.items() if key not in gone} | own
     made = _persons(own, standing)
     standing.update(made)
+    for key in _outdated(base, made):  # before wholes are made of them
+        standing.pop(key, None)
     among = {part for whole in summed for part in parts[whole]}
     by_area: dict[str, dict[Slice, Vector]] = {}
     for key, cell in standing.items() if among else ():

@@ -327,3 +327,28 @@ def test_breaks_of_nothing_make_no_edition(session: Session) -> None:
     upload = checked_upload(session, breaks="area,year,kind\n,2002,population\n")
     with pytest.raises(Refused, match="hold no counts"):
         made(session, upload)
+
+
+@pytest.mark.parametrize(
+    ("gives_way", "kept"),
+    [
+        ("cells", {"2001", "2002", "2003", "2004"}),
+        ("handed", {"2001", "2002", "2003", "2004"}),
+        ("years", {"2001", "2002", "2003", "2004"}),
+        ("areas", {"2004"}),
+    ],
+)
+def test_years_that_merely_move_to_another_code_take_no_place_of_others(
+    session: Session, gives_way: str, kept: set[str]
+) -> None:
+    """What gives way gives way to counts handed in, in the base and in what is made of it."""
+    first(session)
+    content = counts_csv(("main",), years=(2004,))
+    upload = checked_upload(session, content, mapping=WHOLE, areas=MERGED)
+    made(session, upload, taking=Taking(gives_way=gives_way))
+    after = held(session, 2)
+    assert {key.period for key in after if key.area == "cape"} == {"2001", "2002", "2003"}
+    assert {key.period for key in after if key.area == "main"} == kept
+    for key, cell in held(session, 1, "cape").items():
+        assert np.array_equal(after[key].values, cell.values)
+    assert rebuilt(session)

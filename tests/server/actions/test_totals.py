@@ -252,3 +252,19 @@ def test_deaths_counted_follow_when_the_other_sex_is_revised() -> None:
     both = base.cells[counted("a")].values + handed[key("a", "m")].values
     assert made.cells[counted("a", "p")].values.tolist() == both.tolist()
     assert not made.ended
+
+
+def test_a_whole_counts_no_deaths_of_a_part_whose_persons_came_anew_by_sex() -> None:
+    """Its persons were shared out in the base; all of the women and men handed in are counted."""
+    one = AgeGrid((0,))
+    a, b = key("a", "p"), key("b", "p")
+    beside = a._replace(measure="counted_deaths")
+    shared = {a: 10.0, beside: 8.0, b: 20.0}
+    told = {which: Vector("final", one, np.array([n])) for which, n in shared.items()}
+    base = totalled(told, FLAT, base={}).cells
+    assert base[beside._replace(area="w")].values == [28.0]
+    anew = {key("a", sex): Vector("final", one, np.array([n])) for sex, n in (("f", 6.0), ("m", 4))}
+    made = totalled(anew, FLAT, base=base, base_areas=FLAT)
+    assert made.cells[key("w", "p")].values == [30.0]
+    assert beside._replace(area="w") not in made.cells
+    assert {beside, beside._replace(area="w")} <= made.ended
