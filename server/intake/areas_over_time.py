@@ -7,7 +7,7 @@ from typing import Protocol
 from engine.ages import AgeGrid
 from server.intake import break_rows, successions
 from server.intake.checks import breaks as break_checks
-from server.intake.checks import files, lists, moved_counts
+from server.intake.checks import columns, files, lists, moved_counts
 from server.intake.checks import successions as succession_checks
 from server.intake.layout import layout
 from server.intake.lists import SmallTable, small_table
@@ -62,6 +62,7 @@ def tables_of(handed: Sequence[File]) -> Tables:
     for file in handed:
         laid = layout(file.content, file.name, file.mapping.form)
         found = files.problems_of(laid)
+        found += columns.problems_of_list(columns.Mapped(laid, file.role, file.mapping))
         if errors_of(found):
             unread += laid.row_count
         else:

@@ -40,6 +40,7 @@ from server.intake.standing import NOTHING_STANDS, Standing
 from server.intake.successions import NOTHING, Successions
 from server.store.records import Area, Break, Key, Vector
 
+DYING = ("deaths", RATE)
 READER = "reader-3"  # changes whenever the same bytes and mapping would give other schedules
 
 
@@ -134,7 +135,9 @@ def _counts(handed: Sequence[Handed], standing: Standing | None) -> Parsed:
                 wide[laid.name] = spread
     codes, areas, clashes = _areas(sheets, handed)
     problems += clashes
-    done = [_dated(_sorted(cells(sheet, codes)), sheet.mapping) for sheet in sheets]
+    cut = [_sorted(cells(sheet, codes)) for sheet in sheets]
+    died = _years_of_deaths(cut)
+    done = [_dated(part, sheet.mapping, died) for part, sheet in zip(cut, sheets, strict=True)]
     problems += [problem for part in done for problem in part.problems]
     parts = {
         area.code
@@ -239,18 +242,29 @@ def _sorted(read: Cells) -> _Sorted:
     )
 
 
-def _dated(part: _Sorted, mapping: Mapping) -> _Sorted:
-    """With people of 1 January made people at risk, where the mapping says that they are that."""
+def _years_of_deaths(parts: Iterable[_Sorted]) -> set[str]:
+    of_deaths = (block for part in parts for block in part.blocks if block.measure in DYING)
+    return {str(year) for block in of_deaths for year in np.unique(parts_of(block.place)[2])}
+
+
+def _dated(part: _Sorted, mapping: Mapping, died: set[str]) -> _Sorted:
+    """With people of 1 January made people at risk, where the mapping says that they are that.
+    That a 1 January has no next one is told where deaths of its year are handed in, or none are."""
     if mapping.population_is != JANUARY:
         return part
     mean = averaged(part.blocks, part.age_totals)
+    found = [
+        one
+        for one in mean.found
+        if one.key != "last_january" or not died or one.fault.values["year"] in died
+    ]
     return replace(
         part,
         blocks=list(mean.blocks),
         age_totals=list(mean.asides),
         ageless=list(averaged((), part.ageless).asides),
         grouped=list(averaged((), part.grouped).asides),
-        problems=part.problems + derived.problems_of(mean.found),
+        problems=part.problems + derived.problems_of(found),
     )
 
 

@@ -1,5 +1,6 @@
 """Checks of the mapping against the file: is every needed column there."""
 
+from collections import Counter
 from collections.abc import Iterator
 from dataclasses import dataclass
 
@@ -12,9 +13,11 @@ from server.intake.forms.found import faults
 from server.intake.forms.units import multiplier, suggested
 from server.intake.labels import NOT_STATED, read_year
 from server.intake.layout import MOST_ROWS, Layout
+from server.intake.lists import field_of
 from server.intake.mapping import (
     COLUMNS,
     JANUARY,
+    LISTS,
     NUMBERS,
     RATE_KINDS,
     ROLES,
@@ -44,6 +47,19 @@ def _missing(mapped: Mapped) -> Iterator[Fault]:
         if not mapped.mapping.column(field) and field not in said:
             values = {"field": field, "columns": columns}
             yield Fault(column=field, row=mapped.file.form.heading, values=values)
+
+
+def _doubled(mapped: Mapped) -> Iterator[Fault]:
+    """Of headings that nothing is taken from, two may be the same."""
+    file, form = mapped.file, mapped.mapping.form
+    taken = [mapped.mapping.column(field) for field in COLUMNS]
+    if mapped.role in LISTS:
+        taken = [one for one in file.columns if field_of(one, mapped.role)]
+    taken += [column[0] for column in form.across_columns if column]
+    times = Counter(file.columns)
+    for column in filter(None, dict.fromkeys(taken)):
+        if times[column] > 1:
+            yield Fault(column=column, row=form.heading, values={"count": times[column]})
 
 
 def _unknown(mapped: Mapped) -> Iterator[Fault]:
@@ -161,7 +177,19 @@ def _named(file: Layout) -> str:
     return ", ".join(filter(None, file.columns))[:200]
 
 
+DOUBLED: Check[Mapped] = Check(
+    key="doubled_heading",
+    severity="error",
+    meaning="Two columns have the same name, so that it is not known which is meant. Of "
+    "columns that nothing is taken from it does not matter.",
+    found="this name over {count} columns",
+    expected="a name of its own over each column",
+    remedy="Rename or take out all but one of them.",
+    find=_doubled,
+)
+
 CHECKS: tuple[Check[Mapped], ...] = (
+    DOUBLED,
     Check(
         key="missing_column",
         severity="error",
@@ -299,3 +327,8 @@ CHECKS: tuple[Check[Mapped], ...] = (
 
 def problems_of(mapped: Mapped) -> list[Problem]:
     return [problem for check in CHECKS for problem in check.problems(mapped, mapped.file.name)]
+
+
+def problems_of_list(mapped: Mapped) -> list[Problem]:
+    """Of a small table, whose columns are known by their headings alone."""
+    return DOUBLED.problems(mapped, mapped.file.name)

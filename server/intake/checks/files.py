@@ -1,6 +1,5 @@
 """Checks of a file as such: is it a table of text at all."""
 
-from collections import Counter
 from collections.abc import Iterator
 
 import numpy as np
@@ -31,12 +30,6 @@ def _stray_quote(file: Layout) -> Iterator[Fault]:
 def _blank_heading(file: Layout) -> Iterator[Fault]:
     if not any(file.columns):
         yield Fault(row=file.form.heading)
-
-
-def _doubled_heading(file: Layout) -> Iterator[Fault]:
-    for column, count in list(Counter(file.columns).items())[:MOST_COLUMNS]:
-        if column and count > 1:
-            yield Fault(column=column, row=file.form.heading, values={"count": count})
 
 
 def _too_many_columns(file: Layout) -> Iterator[Fault]:
@@ -103,15 +96,6 @@ CHECKS: tuple[Check[Layout], ...] = (
         expected="names over the columns",
         remedy="Say in the mapping in which row the heading stands, or add one.",
         find=_blank_heading,
-    ),
-    Check(
-        key="doubled_heading",
-        severity="error",
-        meaning="Two columns have the same name, so that it is not known which is meant.",
-        found="this name over {count} columns",
-        expected="a name of its own over each column",
-        remedy="Rename or take out all but one of them.",
-        find=_doubled_heading,
     ),
     Check(
         key="too_many_columns",

@@ -174,8 +174,10 @@ def said_in(mapping: Mapping, role: str) -> Said:
 
 def _mapped(reading: Reading, role: str, said: Said) -> Mapping:
     """What was said, as a mapping."""
+    if role in LISTS:
+        return Mapping(form=reading.form)
     wide = (said.shown or reading.form).across if said.wide is None else said.wide
-    way = stands(reading, role, wide) if role not in LISTS else Across((), ())
+    way = stands(reading, role, wide)
     form = replace(
         reading.form,
         across=way.fields,

@@ -7,6 +7,7 @@ from tests.server.intake.form_cases import COLUMN_CASES, FORM_CASES, WORKED_OUT_
 from tests.server.intake.tables import (
     births,
     counts,
+    csv,
     deaths,
     persons,
     population,
@@ -48,6 +49,11 @@ ALL_AGES = [{**WOMEN[0], "age": "all ages", "deaths": 2_000, "population": 68_25
 
 CASES = (
     *FORM_CASES,
+    Case(
+        "doubled_heading",
+        lambda: [counts(csv(SOUND).replace(b"population", b"deaths", 1), population="")],
+        "missing_column",
+    ),
     Case("missing_column", _mapped(age="")),
     Case("unknown_column", _mapped(deaths="dead")),
     Case("no_area", _mapped(area="")),

@@ -47,6 +47,14 @@ def test_a_year_that_is_lacking_ends_two() -> None:
     assert [one.values["year"] for one in told] == ["2011", "2014"]
 
 
+def test_the_january_after_the_last_deaths_is_no_matter() -> None:
+    """It is needed, and no more is; one that lacks under deaths is told."""
+    until = without(TABLE, where(TABLE, year=2014))
+    assert parse([deaths(until), january(TABLE)]).problems == ()
+    told = parse([deaths(TABLE), january(TABLE)]).problems
+    assert "last_january" in [one.key for one in told]
+
+
 def test_series_of_areas_and_sexes_do_not_touch() -> None:
     """The last January of women is not averaged with the first of men."""
     table = without(TABLE, where(TABLE, area="north", sex="f", year=2014))

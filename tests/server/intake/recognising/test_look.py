@@ -174,3 +174,27 @@ def test_a_file_that_is_no_table_is_looked_at_all_the_same(content: bytes) -> No
 
 def test_lists_have_no_questions() -> None:
     assert look(b"code,becomes\nN1,N2\n", "a.csv", "areas").open == ()
+
+
+def test_a_small_table_is_looked_at_again_with_its_answers() -> None:
+    content = b"code,becomes,name\nN1,N2,North\n"
+    first = look(content, "a.csv", "areas")
+    again = answered(content, "areas", first)
+    assert (again.mapping, again.open) == (Mapping(form=first.mapping.form), ())
+
+
+def test_headings_that_nothing_is_taken_from_may_be_the_same() -> None:
+    noted = LONG.replace(b"deaths\n", b"deaths,note,note\n").replace(b"3\n", b"3,,\n")
+    noted = noted.replace(b"90\n", b"90,,\n")
+    looked = look(noted, "a.csv", "deaths")
+    assert not looked.reading.problems
+    handed = Handed("deaths", "a.csv", noted, looked.mapping)
+    assert "doubled_heading" not in [one.key for one in parse([handed]).problems]
+    twice = Handed("deaths", "a.csv", noted, replace(looked.mapping, area_name="note"))
+    assert "doubled_heading" in [one.key for one in parse([twice]).problems]
+
+
+def test_a_small_table_says_each_thing_once() -> None:
+    content = b"code,becomes,becomes\nN1,N2,N3\n"
+    handed = Handed("areas", "a.csv", content, Mapping())
+    assert "doubled_heading" in [one.key for one in parse([handed]).problems]
