@@ -63,7 +63,7 @@ def facts(meaning: str, why: str, remedy: str, source: str, alarms: str) -> Fact
 
 
 def no_alarm(lines: int) -> str:
-    return _("None in {lines} clean areas, sexes and years.", lines=whole(lines))
+    return _("Not one in {lines} clean areas, sexes and years.", lines=whole(lines))
 
 
 def some_alarms(mean: float, worst: float, where: str) -> str:

@@ -140,7 +140,8 @@ def _plain(cell: str) -> str:
 def answered(looked: Looked) -> Mapping:
     """The proposals, and the likely answer to what is still open."""
     units = dict(looked.units) | dict(looked.mapping.units)
-    sexes = dict(looked.noticed.sexes) | dict(looked.mapping.sex_codes)
+    likely = {code.text: code.likely for code in looked.noticed.sexes if code.likely}
+    sexes = likely | dict(looked.mapping.sex_codes)
     return replace(
         looked.mapping,
         units=tuple(units.items()),

@@ -138,10 +138,10 @@ FAULTS = (
     ),
     Fault(
         "unknown_sex",
-        SOUND.replace("2001,f,", "2001,girls,"),
+        SOUND.replace("2001,f,", "2001,heron,"),
         "8 rows between 2 and 21",
         "sex",
-        "“girls”",
+        "“heron”",
         "f, m or p (female, male, persons)",
         "Give one row for each sex, or say in the mapping what the code means.",
     ),
@@ -227,7 +227,7 @@ LARGE = SOUND + "\n" * LIMIT
 SENT = {"counts": (FILE, LARGE.encode(), "text/csv")}
 NONE_CHOSEN = (
     "No file was chosen. Go back and choose a file of deaths and one of population, or one that "
-    "holds both."
+    "holds both; or paste a table."
 )
 
 

@@ -117,6 +117,7 @@ def test_every_command_explains_itself(capsys: pytest.CaptureFixture[str]) -> No
     (commands,) = (action for action in parser()._actions if action.choices)
     assert set(commands.choices) == {
         *("demo", "serve", "database", "hand-in", "figure", "life-tables"),
+        *("policy", "erase", "reproduce"),
         *("editions", "withdraw", "reinstate", "rebuild"),
     }
     for name in commands.choices:

@@ -50,7 +50,7 @@ def test_the_list_has_a_row_for_each_and_the_measured_data(page: ChecksPage) -> 
 
 
 def test_how_often_a_check_is_wrong_is_said_in_words() -> None:
-    assert say.no_alarm(64_234) == "None in 64,234 clean areas, sexes and years."
+    assert say.no_alarm(64_234) == "Not one in 64,234 clean areas, sexes and years."
     assert say.some_alarms(0.016, 0.25, "Denmark") == (
         "0.02 in 1,000 clean areas, sexes and years; at worst 0.25, in Denmark."
     )
