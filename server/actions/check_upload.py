@@ -15,12 +15,12 @@ from server.store.errors import Refused
 from server.store.records import Basis, Upload
 
 # what it is at, texts of the catalogue
-STAGES = ("opening the files", "reading and checking the rows", "writing the report")
+OPENING, WRITING = "opening the files", "writing the report"
 
 
 def check_upload(session: Session, *, upload_id: int, tell: Tell = untold) -> Report:
     """All problems at once, and what the upload would become. Nothing becomes an edition here.
-    How far it is, it tells by its stages.
+    How far it is, it tells by its stages, of which each file has one.
 
     Raises: Missing; Refused where a file has no mapping yet, the upload is an edition already, or
     what was said of it was changed meanwhile.
@@ -29,14 +29,14 @@ def check_upload(session: Session, *, upload_id: int, tell: Tell = untold) -> Re
     newest = editions.newest_standing(session, upload.collection)
     base = newest.number if newest else 0
     known = standing(session, upload.collection, base)
-    tell(0, len(STAGES), STAGES[0])
+    steps = len(upload.files) + 3
+    tell(0, steps, OPENING)
     files = handed(session, upload)
-    tell(1, len(STAGES), STAGES[1])
-    parsed = parse(files, known)
+    parsed = parse(files, known, reached=lambda step, stage: tell(1 + step, steps, stage))
     if upload.basis is not None:
         parsed = with_basis(parsed, upload.basis, known)
     report = Report.of(parsed)
-    tell(2, len(STAGES), STAGES[2])
+    tell(steps - 1, steps, WRITING)
     with transaction(session):
         uploads.require_read_so(session, upload)
         uploads.set_report(

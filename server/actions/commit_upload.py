@@ -11,6 +11,7 @@ from server.actions.laid_over import Base, made_of
 from server.intake.parsing import READER, Parsed, parse
 from server.intake.problems import Problem
 from server.intake.report import Report
+from server.jobs.executor import Tell, untold
 from server.store import areas, breaks, editions, schedules, uploads
 from server.store.connect import Session, transaction
 from server.store.errors import Refused, Stale
@@ -23,6 +24,9 @@ from server.store.records import (
     Upload,
 )
 
+# what it is at, texts of the catalogue
+STAGES = ("reading the files", "comparing with what stands", "writing the edition")
+
 
 @dataclass(frozen=True, slots=True)
 class Sound:
@@ -32,6 +36,7 @@ class Sound:
     basis: Basis
     base: int
     warnings: int
+    rows: int
 
 
 def commit_upload(
@@ -42,15 +47,34 @@ def commit_upload(
     by: Viewer,
     now: dt.datetime,
     taking: Taking = ALL_OF_IT,
+    tell: Tell = untold,
 ) -> Edition:
     """The newest standing edition with what is taken of the upload as a new edition. All or
-    nothing.
+    nothing. How far it is, it tells by its stages.
 
     Raises: NotAllowed; Missing; Stale where another edition stands than at the check; Refused
     where the upload is an edition already, is not mapped or checked, has errors, has warnings and
     the note is empty, it was changed meanwhile, holds nothing of what is to be taken, its areas
     form no tree, or its totals cannot be summed.
     """
+    sound = require_ready(session, upload_id=upload_id, note=note, by=by)
+    tell(0, len(STAGES), STAGES[0])
+    parsed = read(session, sound.upload)
+    tell(1, len(STAGES), STAGES[1])
+    change = change_of(session, sound, parsed, taking)
+    prepared = editions.prepare(session, change)
+    masked = masking.mask_of(session, change)
+    tell(2, len(STAGES), STAGES[2])
+    with transaction(session):
+        editions.require_base(session, change.collection, change.base)
+        uploads.require_unchanged(session, sound.upload)
+        made = editions.write(session, prepared, by=by.name, note=note.strip(), at=now)
+        masking.keep(session, change, made.number, masked, at=now)
+    return made
+
+
+def require_ready(session: Session, *, upload_id: int, note: str, by: Viewer) -> Sound:
+    """All that can be told without reading the files again. Raises: as `commit_upload` does."""
     by.require(Right.COMMIT)
     sound = require_sound(uploads.find(session, upload_id))
     if sound.warnings and not note.strip():
@@ -63,15 +87,7 @@ def commit_upload(
     standing = editions.newest_standing(session, sound.upload.collection)
     if (number := standing.number if standing else 0) != sound.base:
         raise Stale(sound.base, number)
-    change = change_of(session, sound, read(session, sound.upload), taking)
-    prepared = editions.prepare(session, change)
-    masked = masking.mask_of(session, change)
-    with transaction(session):
-        editions.require_base(session, change.collection, change.base)
-        uploads.require_unchanged(session, sound.upload)
-        made = editions.write(session, prepared, by=by.name, note=note.strip(), at=now)
-        masking.keep(session, change, made.number, masked, at=now)
-    return made
+    return sound
 
 
 def require_sound(upload: Upload) -> Sound:
@@ -90,12 +106,12 @@ def require_sound(upload: Upload) -> Sound:
         )
     report = Report.from_json(upload.report)
     _require_no_errors(upload, report.errors)
-    return Sound(upload, upload.basis, upload.base, warnings=len(report.warnings))
+    return Sound(upload, upload.basis, upload.base, warnings=len(report.warnings), rows=report.rows)
 
 
 def read(session: Session, upload: Upload) -> Parsed:
     """The kept bytes, read again with the kept mapping. Raises: Refused where they have errors."""
-    parsed = parse(handed(session, upload), None)
+    parsed = parse(handed(session, upload), None, warn=False)
     _require_no_errors(upload, parsed.errors)
     return parsed
 

@@ -1,7 +1,7 @@
 """From handed-in bytes to schedules or problems: a pure function of bytes, mapping and reader."""
 
 from collections import defaultdict
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, replace
 from itertools import repeat
 
@@ -40,6 +40,9 @@ from server.intake.standing import NOTHING_STANDS, Standing
 from server.intake.successions import NOTHING, Successions
 from server.store.records import Area, Break, Key, Vector
 
+# what it is at, texts of the catalogue
+READING, CHECKING = "reading the rows", "checking the counts"
+Reached = Callable[[int, str], object]
 DYING = ("deaths", RATE)
 READER = "reader-3"  # changes whenever the same bytes and mapping would give other schedules
 
@@ -89,11 +92,19 @@ class _Sorted:
     grouped: list[Aside]  # counts by age whose area or sex is not known
 
 
-def parse(handed: Sequence[Handed], standing: Standing | None = NOTHING_STANDS) -> Parsed:
+def parse(
+    handed: Sequence[Handed],
+    standing: Standing | None = NOTHING_STANDS,
+    *,
+    warn: bool = True,
+    reached: Reached = lambda step, stage: None,
+) -> Parsed:
     """Read the files of one upload. Never raises on bad content: it collects all problems.
 
     `standing` is what the edition before holds, against which the upload is checked too; with None
-    it is not. The schedules do not depend on it.
+    it is not. The schedules do not depend on it. `reached` is told which stage begins, and
+    after how many steps, a step a file. Without `warn`, series are looked through for errors alone.
+
     Raises: ValueError where a role is unknown or comes twice.
     """
     roles, known = [file.role for file in handed], ", ".join(EVERY_ROLE)
@@ -102,7 +113,8 @@ def parse(handed: Sequence[Handed], standing: Standing | None = NOTHING_STANDS) 
     lists = tables_of([file for file in handed if file.role in LISTS])
     # codes of which it is said what becomes of them are not missed
     left = standing.without(lists.old_codes) if standing else None
-    counts = _counts([file for file in handed if file.role not in LISTS], left)
+    counted = [file for file in handed if file.role not in LISTS]
+    counts = _counts(counted, left, warn=warn, reached=reached)
     grids = {key: cell.grid for key, cell in counts.cells.items()}
     said = told(lists, counts.areas, grids, standing)
     return replace(
@@ -115,13 +127,16 @@ def parse(handed: Sequence[Handed], standing: Standing | None = NOTHING_STANDS) 
     )
 
 
-def _counts(handed: Sequence[Handed], standing: Standing | None) -> Parsed:
+def _counts(
+    handed: Sequence[Handed], standing: Standing | None, *, warn: bool, reached: Reached
+) -> Parsed:
     """The files of counts, as `parse`."""
     problems: list[Problem] = []
     sheets: list[Sheet] = []
     wide: dict[str, across.Spread] = {}
     unread = 0
-    for file in sorted(handed, key=lambda file: list(ROLES).index(file.role)):
+    for step, file in enumerate(sorted(handed, key=lambda file: list(ROLES).index(file.role))):
+        reached(step, READING)
         laid = layout(file.content, file.name, file.mapping.form)
         found = files.problems_of(laid)
         if not errors_of(found):
@@ -152,13 +167,15 @@ def _counts(handed: Sequence[Handed], standing: Standing | None) -> Parsed:
         unplaced=len(sheets) < len(handed) or any(part.unplaced for part in done),
         standing=standing,
     )
+    reached(len(handed), CHECKING)
     settled = settle(ledger)
     problems += [problem for check in totals.CHECKS for problem in check.problems(ledger)]
     problems += [problem for check in unstated.CHECKS for problem in check.problems(settled)]
     made = _deaths_of_rates(settled.ledger, done, handed)
     problems += derived.problems_of(made.found)
     for check in OF_LEDGER:
-        problems += check.problems(made.ledger)
+        if warn or check.severity == "error":
+            problems += check.problems(made.ledger)
     return Parsed(
         cells=_vectors(made.ledger.without_totals()),
         areas=areas,

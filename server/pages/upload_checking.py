@@ -1,4 +1,4 @@
-"""How far the reading and checking of an upload is."""
+"""How far the reading and checking of an upload is, or the making of an edition of it."""
 
 from dataclasses import dataclass
 from typing import ClassVar
@@ -15,7 +15,7 @@ from server.store.records import Job
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class UploadCheckingPage(Page):
-    """Is it being read still?"""
+    """Is it being read, or made an edition, still?"""
 
     template: ClassVar[str] = "upload_checking/page.html"
     place: str  # address of the upload
@@ -24,26 +24,30 @@ class UploadCheckingPage(Page):
     done: int
     total: int
     job: int
+    committing: bool
 
 
 def build(session: Session, upload_id: int, job: Job) -> UploadCheckingPage:
     upload = uploads.find(session, upload_id)
     collection = collections.find(session, upload.collection)
     here = f"/uploads/{upload.id}/checking?job={job.id}"
+    committing = job.kind == "commit"
+    at = _("making an edition") if committing else _("reading and checking")
     return UploadCheckingPage(
         frame=Frame(
-            title=_("The files are read and checked"),
+            title=_("An edition is made") if committing else _("The files are read and checked"),
             address=here,
-            locator=locator(upload, collection, phrase(_("reading and checking"))),
+            locator=locator(upload, collection, phrase(at)),
             shown=_("Not an edition"),
             nav="upload",
         ),
-        answer=say.checking(job.state, job.message),
-        lead=say.checking_further(job.state),
+        answer=(say.committing if committing else say.checking)(job.state, job.message),
+        lead=(say.committing_further if committing else say.checking_further)(job.state),
         place=f"/uploads/{upload.id}",
         here=here,
         running=job.state in ("queued", "running"),
         done=job.done,
         total=job.total,
         job=job.id,
+        committing=committing,
     )

@@ -3,16 +3,18 @@
 import datetime as dt
 import json
 import time
+from typing import Any
 
 from fastapi import APIRouter, Request, Response
 
 from server.accounts.viewer import Right
 from server.actions.check_upload import require_checkable
-from server.actions.commit_upload import commit_upload
+from server.actions.commit_upload import commit_upload, require_ready
 from server.actions.correct_upload import correct_upload
 from server.actions.discard_upload import discard_upload
 from server.actions.erase_bytes import erase_bytes
 from server.actions.preview_upload import preview_upload
+from server.actions.works import to_commit
 from server.pages import upload as upload_page
 from server.pages import upload_checking, upload_problems
 from server.pages import uploads as uploads_page
@@ -31,6 +33,7 @@ MAY_READ = [needs(Right.READ)]
 MAY_UPLOAD = [needs(Right.UPLOAD)]
 CHOICES = ("area", "years", "gives_way")  # of what is taken of an upload
 A_MOMENT = 2.0  # seconds a reader waits for the checks without being told how far they are
+AT_ONCE = 50_000  # rows of an upload that is made an edition while the reader waits
 
 
 @router.api_route("/uploads", methods=READ, dependencies=MAY_READ)
@@ -50,23 +53,33 @@ def check(request: Request, session: SessionDep, upload: int) -> Response:
     """Have the files read and checked. What takes longer than a moment is watched on a page."""
     require_checkable(uploads.find(session, upload))
     session.rollback()
+    job, state = _set_to_work(request, "check", {"upload": upload})
+    step = "problems" if state == "done" else f"checking?job={job}"
+    return redirect(f"/uploads/{upload}/{step}", status=303)
+
+
+def _set_to_work(request: Request, kind: str, params: dict[str, Any]) -> tuple[int, str]:
+    """The job, and its state after a moment."""
     jobs = request.app.state
-    job = jobs.executor.submit("check", {"upload": upload})
+    job = jobs.executor.submit(kind, params)
     end = time.monotonic() + A_MOMENT
     while (state := jobs.book.find(job).state) in ("queued", "running"):
         if time.monotonic() > end:
             break
         time.sleep(0.02)
-    step = "problems" if state == "done" else f"checking?job={job}"
-    return redirect(f"/uploads/{upload}/{step}", status=303)
+    return job, state
 
 
 @router.api_route("/uploads/{upload:int}/checking", methods=READ, dependencies=MAY_READ)
 def show_checking(request: Request, session: SessionDep, upload: int) -> Response:
     job = _job(request, upload, plain.keys(request, "job")["job"])
-    if job.state != "done":
+    draft = uploads.find(session, upload)
+    made = job.kind == "commit" and draft.edition is not None  # even if it was stopped too late
+    if job.state != "done" and not made:
         return render(request, upload_checking.build(session, upload, job))
     found = f"/uploads/{upload}/problems"
+    if made:
+        found = f"/c/{draft.collection}/{draft.edition}/contents"
     if asked_block(request):  # the page asks for itself while it waits: have it go on
         return Response(headers={"HX-Redirect": found})
     return redirect(found)
@@ -80,11 +93,11 @@ def cancel_checking(request: Request, upload: int, form: FormDep) -> Response:
 
 
 def _job(request: Request, upload: int, number: str) -> Job:
-    """The job that checks this upload. Raises: Missing."""
+    """The job that checks this upload or makes an edition of it. Raises: Missing."""
     if not (number.isascii() and number.isdigit()):
         raise Missing("job", number)
     found: Job = request.app.state.book.find(int(number))
-    if json.loads(found.params) != {"upload": upload}:
+    if json.loads(found.params).get("upload") != upload:
         raise Missing("job", number)
     return found
 
@@ -128,23 +141,25 @@ def correct_file(
 
 
 @router.post("/uploads/{upload:int}/commit", dependencies=[needs(Right.COMMIT)])
-def commit(session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep) -> Response:
-    """Make the edition; where choices were made that were not shown yet, show what they change."""
+def commit(
+    request: Request, session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep
+) -> Response:
+    """Make the edition; where choices were made that were not shown yet, show what they change.
+    A large upload is worked on by a process of its own, and watched on a page."""
     sent = [(key, value) for key, value in form.multi_items() if isinstance(value, str)]
     taking = taking_of((key, value) for key, value in sent if key in CHOICES)
     if text(form, "do") == "look" or asked(taking) != text(form, "shown"):
         place = f"/uploads/{upload}/problems?{asked(taking)}".rstrip("?")
         return redirect(f"{place}#effect", status=303)
-    edition = commit_upload(
-        session,
-        upload_id=upload,
-        note=text(form, "note"),
-        by=viewer,
-        now=dt.datetime.now(dt.UTC),
-        taking=taking,
-    )
-    collection = uploads.find(session, upload).collection
-    return redirect(f"/c/{collection}/{edition.number}/contents", status=303)
+    note, now = text(form, "note"), dt.datetime.now(dt.UTC)
+    ready = require_ready(session, upload_id=upload, note=note, by=viewer)
+    if ready.rows > AT_ONCE:
+        session.rollback()
+        params = to_commit(upload, note=note, by=viewer, now=now, taking=taking)
+        job, _ = _set_to_work(request, "commit", params)
+        return redirect(f"/uploads/{upload}/checking?job={job}", status=303)
+    edition = commit_upload(session, upload_id=upload, note=note, by=viewer, now=now, taking=taking)
+    return redirect(f"/c/{ready.upload.collection}/{edition.number}/contents", status=303)
 
 
 @router.post("/uploads/{upload:int}/discard", dependencies=MAY_UPLOAD)

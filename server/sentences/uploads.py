@@ -199,6 +199,34 @@ def checking(state: str, message: str) -> Sentence:
     return phrase(said[state])
 
 
+def committing(state: str, message: str) -> Sentence:
+    """How far the making of an edition is, or how it ended."""
+    said = {
+        "queued": _("The upload waits for its turn."),
+        "running": _("The edition is being made: {stage}.", stage=_(message))
+        if message
+        else _("The edition is being made."),
+        "cancelled": _("The making of the edition was stopped. Nothing was changed."),
+        "failed": _("The edition could not be made. {why}", why=_(message)),
+        "done": _("The edition has been made."),
+    }
+    return phrase(said[state])
+
+
+def committing_further(state: str) -> tuple[Sentence, ...]:
+    """What may be done meanwhile."""
+    if state not in ("queued", "running"):
+        return ()
+    return (
+        phrase(
+            _(
+                "This page may be left; the work goes on. Either the whole edition is made or "
+                "nothing of it."
+            )
+        ),
+    )
+
+
 def checking_further(state: str) -> tuple[Sentence, ...]:
     """What may be done meanwhile."""
     if state not in ("queued", "running"):

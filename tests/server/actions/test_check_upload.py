@@ -131,8 +131,8 @@ def test_a_draft_mapped_anew_while_it_is_checked_gets_no_report_of_the_old_mappi
     draft = checked_upload(session, counts_csv())
     parse = checking.parse
 
-    def overtaken(*handed: Any) -> Parsed:
-        parsed = parse(*handed)
+    def overtaken(*handed: Any, **how: Any) -> Parsed:
+        parsed = parse(*handed, **how)
         with new_session() as other, transaction(other):
             mappings = {"counts": replace(COLUMNS, whole="isle").to_json()}
             uploads.set_mapping(other, draft.id, mappings=mappings, basis=BASIS)
@@ -143,3 +143,20 @@ def test_a_draft_mapped_anew_while_it_is_checked_gets_no_report_of_the_old_mappi
     with pytest.raises(Refused, match="changed while it was being checked"):
         check_upload(session, upload_id=draft.id)
     assert uploads.find(session, draft.id).report == ""
+
+
+def test_how_far_it_is_is_told_a_step_a_file(session: Session) -> None:
+    told: list[tuple[int, int, str]] = []
+    deaths = replace(COLUMNS, population="")
+    files = [("deaths", "d.csv", counts_csv()), ("population", "p.csv", counts_csv())]
+    upload = receive_upload(session, collection="saltmarsh", files=files, by=LOCAL, now=NOON)
+    mappings = {"deaths": deaths, "population": replace(COLUMNS, deaths="")}
+    map_upload(session, upload_id=upload.id, mappings=mappings, basis=BASIS, by=LOCAL, now=NOON)
+    check_upload(session, upload_id=upload.id, tell=lambda *step: told.append(step))  # type: ignore[arg-type,misc]
+    assert told == [
+        (0, 5, "opening the files"),
+        (1, 5, "reading the rows"),
+        (2, 5, "reading the rows"),
+        (3, 5, "checking the counts"),
+        (4, 5, "writing the report"),
+    ]

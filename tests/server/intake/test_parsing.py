@@ -345,3 +345,14 @@ def test_a_report_survives_its_text() -> None:
     report = Report.of(parse([counts(setting(SOUND, WOMEN, deaths="1,204"))]))
     assert Report.from_json(report.to_json()) == report
     assert str(Report.from_json(report.to_json()).errors[0]) == str(report.errors[0])
+
+
+def test_without_warnings_the_counts_and_the_errors_are_the_same() -> None:
+    for change in ({}, {"deaths": "9000"}, {"deaths": "x"}):
+        table = [row | change if number == 40 else row for number, row in enumerate(SOUND)]
+        whole, errors = parse([counts(table)]), parse([counts(table)], warn=False)
+        assert errors.errors == whole.errors
+        assert hashes(errors) == hashes(whole)
+        if "9000" in change.values():
+            assert whole.problems
+            assert not errors.problems

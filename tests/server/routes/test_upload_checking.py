@@ -1,5 +1,6 @@
 """The page that tells how far the checks of an upload are, where they take longer than a moment."""
 
+import json
 from collections.abc import Callable, Iterator, Mapping
 from typing import Any
 
@@ -7,13 +8,19 @@ import pytest
 from fastapi import FastAPI
 from starlette.testclient import TestClient
 
+from server.accounts.viewer import LOCAL
+from server.actions.check_upload import check_upload
+from server.actions.commit_upload import commit_upload
+from server.actions.works import works
 from server.app import create_app
 from server.config import Config
 from server.jobs.executor import TOO_LARGE, Tell, run
 from server.routes import uploads
+from server.store import editions, schedules
 from server.store.connect import Session
 from server.store.jobs import JobBook
-from tests.factories import counts_csv
+from server.store.records import Taking
+from tests.factories import NOON, counts_csv
 from tests.server.routes.test_uploads import AREAS, draft
 from tests.server.web.site import browser
 
@@ -62,13 +69,13 @@ def test_it_waits_then_says_what_is_done_and_leads_to_what_was_found(
     pages = []
 
     def checking(_params: object, tell: Tell) -> str:
-        tell(1, 3, "reading and checking the rows")
+        tell(1, 4, "reading the rows")
         pages.append(client.get(place).text)
         return ""
 
     at_work(app, checking)
-    assert "The files are being read: reading and checking the rows." in pages[0]
-    assert "1 of 3 steps done" in pages[0]
+    assert "The files are being read: reading the rows." in pages[0]
+    assert "1 of 4 steps done" in pages[0]
     assert "every 1s" in pages[0]
     done = client.get(place)
     assert (done.status_code, done.headers["location"]) == (302, "/uploads/1/problems")
@@ -102,3 +109,70 @@ def test_a_job_that_is_not_of_this_upload_is_no_page(
     app.state.book.queue("check", {"upload": 77})
     assert client.get(f"/uploads/1/checking?job={job}").status_code == 404
     assert client.post("/uploads/1/checking/cancel", data={"job": job}).status_code == 404
+
+
+def checked(client: TestClient, app: FastAPI, content: bytes = b"") -> None:
+    """Upload 1, ready to become an edition."""
+    upload = draft(client, content or counts_csv())
+    client.post(f"{upload}/reading", data=AREAS)
+    do(app)
+
+
+def do(app: FastAPI) -> None:
+    """The work asked for last, as a worker does it."""
+    job = app.state.book.claim()
+    run(app.state.book, job, works(app.state.sessions)[job.kind], json.loads(job.params))
+
+
+def test_a_large_upload_is_made_an_edition_by_a_worker(
+    app: FastAPI, client: TestClient, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(uploads, "AT_ONCE", 10)
+    checked(client, app)
+    asked = client.post("/uploads/1/commit", data={"note": "as delivered", "years": "2002"})
+    assert asked.headers["location"].startswith("/uploads/1/problems")  # first it is shown
+    chosen = {"note": "as delivered", "years": "2002", "shown": "years=2002&gives_way=cells"}
+    asked = client.post("/uploads/1/commit", data=chosen)
+    place = asked.headers["location"]
+    assert (asked.status_code, place) == (303, "/uploads/1/checking?job=2")
+    page = client.get(place).text
+    assert "The upload waits for its turn." in page
+    assert "Either the whole edition is made or nothing of it." in page
+    do(app)
+    done = client.get(place)
+    assert (done.status_code, done.headers["location"]) == (302, "/c/dk/1/contents")
+    with app.state.sessions() as session:
+        edition = editions.find(session, "dk", 1)
+        assert edition is not None
+        assert (edition.taking, edition.note) == (Taking(periods=("2002",)), "as delivered")
+        assert schedules.contents(session, "dk", 1).periods == ("2002",)
+
+
+def test_what_can_be_told_is_refused_before_a_worker_is_asked(
+    app: FastAPI, client: TestClient, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(uploads, "AT_ONCE", 10)
+    checked(client, app)
+    client.post("/uploads/1/commit", data={"note": "first"})
+    do(app)
+    again = client.post("/uploads/1/commit", data={"note": "again"})
+    assert again.status_code == 409
+    assert "Upload 1 is edition 1 already." in again.text
+    assert app.state.book.claim() is None
+
+
+def test_why_no_edition_was_made_is_said(
+    app: FastAPI, client: TestClient, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(uploads, "AT_ONCE", 10)
+    checked(client, app)
+    client.post("/uploads/1/commit", data={"note": "late"})
+    other = draft(client, counts_csv(), collection="dk")
+    client.post(f"{other}/reading", data=AREAS)
+    with app.state.sessions() as session:
+        check_upload(session, upload_id=2)
+        commit_upload(session, upload_id=2, note="first", by=LOCAL, now=NOON)
+    do(app)
+    page = client.get("/uploads/1/checking?job=2").text
+    assert "The edition could not be made. The checks ran against no edition" in page
+    assert "Back to the upload" in page
