@@ -99,8 +99,8 @@ def test_a_reader_that_reads_otherwise_is_noticed(
 ) -> None:
     read = committing.parse
 
-    def otherwise(*handed: object) -> object:
-        parsed = read(*handed)  # type: ignore[arg-type]
+    def otherwise(*handed: object, **how: object) -> object:
+        parsed = read(*handed, **how)  # type: ignore[arg-type]
         key = next(iter(parsed.cells))
         return replace(parsed, cells={k: c for k, c in parsed.cells.items() if k != key})
 
