@@ -1,20 +1,41 @@
-"""Ratios of reading an upload of a million rows to a bare read of the table, side by side.
+"""Ratios of reading an upload of a million rows to a bare read of the table, side by side; then the
+whole way of it, received, checked and made an edition, in a process whose memory is measured.
 
     OPENBLAS_NUM_THREADS=1 taskset -c 0 python -m tests.benchmarks.intake
 
-Sides of a ratio take turns; medians are compared. Nothing is asserted: machines differ.
+Sides of a ratio take turns; medians are compared. Of the whole way it is processor time, so that
+what else the machine does matters less. Nothing is asserted: machines differ.
 """
 
+import datetime as dt
+import gc
 import io
+import multiprocessing
+import resource
+import time
+from collections.abc import Callable
+from functools import partial
+from pathlib import Path
+from tempfile import TemporaryDirectory
 
 import numpy as np
 import pandas as pd
 
+from server.accounts.viewer import LOCAL
+from server.actions.check_upload import check_upload
+from server.actions.commit_upload import commit_upload
+from server.actions.create_collection import create_collection
+from server.actions.map_upload import map_upload
+from server.actions.receive_upload import receive_upload
 from server.intake.checks import OF_LEDGER, fields
 from server.intake.layout import layout
 from server.intake.mapping import Mapping
 from server.intake.parsing import Handed, parse
 from server.intake.sheets import load
+from server.store.connect import make_engine, sessions
+from server.store.migrating import migrate
+from server.store.records import Basis
+from server.worker import SELDOM
 from tests.benchmarks.engine import side_by_side
 
 AREAS, YEARS = 1_000, 25
@@ -60,8 +81,59 @@ def million() -> bytes:
     return table.to_csv(index=False).encode()
 
 
+def whole_way(content: bytes, name: str = "counts.csv", mapping: Mapping = COLUMNS) -> None:
+    """Say what each step of an upload takes, as a worker takes it, and the memory it needs."""
+    gc.set_threshold(SELDOM)
+    now, before = dt.datetime.now(dt.UTC), _megabytes()
+    with TemporaryDirectory() as folder:
+        url = f"sqlite:///{Path(folder) / 'whole.db'}"
+        migrate(url)
+        session = sessions(make_engine(url))()
+        create_collection(session, code="isles", name="Isles", owner="Desk", by=LOCAL, now=now)
+        files = [("counts", name, content)]
+        limit = len(content)
+        receive = partial(
+            receive_upload, session, collection="isles", files=files, by=LOCAL, now=now, limit=limit
+        )
+        taken = [_said("received", receive)]
+        basis = Basis("residents", "death", "midyear", "1 July", "an invented register")
+        map_upload(
+            session, upload_id=1, mappings={"counts": mapping}, basis=basis, by=LOCAL, now=now
+        )
+        taken.append(_said("checked", partial(check_upload, session, upload_id=1)))
+        print(f"memory beyond what the process began with: {_megabytes() - before:.0f} MB")
+        commit = partial(commit_upload, session, upload_id=1, note="as it is", by=LOCAL, now=now)
+        taken.append(_said("made an edition", commit))
+        print(f"memory beyond what the process began with: {_megabytes() - before:.0f} MB")
+        if name.endswith(".csv"):
+            reads = [_seconds(lambda: pd.read_csv(io.BytesIO(content))) for _ in range(5)]
+            bare = sorted(reads)[2]
+            print(f"together {sum(taken):.2f} s of processor time; a bare read: {bare:.3f} s")
+            print(f"read, checked and stored: ratio {sum(taken) / bare:.1f}")
+
+
+def _said(what: str, step: Callable[[], object]) -> float:
+    took = _seconds(step)
+    print(f"{what}: {took:.2f} s of processor time")
+    return took
+
+
+def _seconds(step: Callable[[], object]) -> float:
+    begun = time.process_time()
+    step()
+    return time.process_time() - begun
+
+
+def _megabytes() -> float:
+    """The most this process has held."""
+    return resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
+
+
 def main() -> None:
     content = million()
+    child = multiprocessing.get_context("spawn").Process(target=whole_way, args=(content,))
+    child.start()
+    child.join()
     handed = [Handed("counts", "counts.csv", content, COLUMNS)]
     parsed = parse(handed)
     print(f"{parsed.row_count} rows, {len(content) / 1e6:.0f} MB, {len(parsed.cells)} schedules")
