@@ -1,6 +1,7 @@
 """Masks of editions: made before any lock is taken, written in the same transaction as these."""
 
 import datetime as dt
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 from server.disclosure.masking import Content, mask
@@ -37,9 +38,10 @@ def mask_of(session: Session, change: Change) -> Masked | None:
         Content(trees[number], _held(history, number), before[number].mask)
         for number in sorted(known)
     ]
+    otherwise = _shown_otherwise(session, change.collection, policy.number, trees, history)
     base = {} if change.replace or not change.base else _held(history, change.base)
     cells = {key: cell for key, cell in base.items() if key not in change.ended}
-    made = mask(change.areas, cells | dict(change.cells), policy.terms, earlier)
+    made = mask(change.areas, cells | dict(change.cells), policy.terms, earlier, otherwise)
     kept = dict(made.mask)
     if not whole and change.base:
         stays = before[change.base].mask
@@ -72,17 +74,34 @@ def masks_under(session: Session, collection: str, terms: Terms) -> dict[int, Ke
     numbers = sorted(one.number for one in editions.listing(session, collection))
     history = changes.versions(session, collection, max(numbers, default=0), Selection(cause=None))
     trees = changes.tree(session, collection, numbers)
+    otherwise = _shown_otherwise(session, collection, 0, trees, history)
     earlier: list[Content] = []
     found: dict[int, Kept] = {}
     for number in numbers:
         cells = _held(history, number)
-        made = mask(trees[number], cells, terms, earlier)
+        made = mask(trees[number], cells, terms, earlier, otherwise)
         earlier.append(Content(trees[number], cells, made.mask))
         found[number] = Kept(made.mask, made.exposed, made.narrow)
     return found
 
 
-def _held(history: dict[Key, tuple[changes.Held, ...]], number: int) -> dict[Key, Vector]:
+def _shown_otherwise(
+    session: Session,
+    collection: str,
+    policy: int,
+    trees: Mapping[int, tuple[Area, ...]],
+    history: Mapping[Key, tuple[changes.Held, ...]],
+) -> list[Content]:
+    """The editions as all policies but this one showed them."""
+    others = (one.number for one in policies.listing(session, collection) if one.number != policy)
+    return [
+        Content(trees[number], _held(history, number), kept.mask)
+        for other in others
+        for number, kept in masks.of_editions(session, collection, other).items()
+    ]
+
+
+def _held(history: Mapping[Key, tuple[changes.Held, ...]], number: int) -> dict[Key, Vector]:
     return {
         key: one.vector for key, ones in history.items() for one in ones if one.holds_in(number)
     }

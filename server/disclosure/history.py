@@ -68,13 +68,28 @@ def fresh_of(of: Block, period: str, measure: str, states: Sequence[State]) -> B
     """Numbers that no earlier edition has, [slot, sex]: nobody knows them yet."""
     fresh = np.ones_like(of.held)
     for state in states:
-        for place, area in enumerate(of.areas):
-            for sex, code in enumerate(SEXES):
-                vector = state.cells.get(Key(area.code, code, period, measure))
-                if vector is not None:
-                    rows = np.flatnonzero(of.area == place)
-                    fresh[rows, sex] &= _then(of, rows, vector) != of.values[rows, sex]
+        fresh &= ~_same(of, period, measure, state)
     return fresh
+
+
+def public_of(of: Block, period: str, measure: str, states: Sequence[State]) -> Bools:
+    """Numbers that were shown, [slot, sex]."""
+    public = np.zeros_like(of.held)
+    for state in states:
+        public |= _same(of, period, measure, state) & ~_hidden(of, period, measure, state)
+    return public
+
+
+def _same(of: Block, period: str, measure: str, state: State) -> Bools:
+    """Where an edition has the same number, [slot, sex]."""
+    found = np.zeros_like(of.held)
+    for place, area in enumerate(of.areas):
+        for sex, code in enumerate(SEXES):
+            vector = state.cells.get(Key(area.code, code, period, measure))
+            if vector is not None:
+                rows = np.flatnonzero(of.area == place)
+                found[rows, sex] = _then(of, rows, vector) == of.values[rows, sex]
+    return found
 
 
 def _then(of: Block, rows: Ints, vector: Vector) -> Array:
@@ -92,7 +107,7 @@ def _then(of: Block, rows: Ints, vector: Vector) -> Array:
 
 
 def leaking(of: Block, hidden: Bools, period: str, measure: str, states: Sequence[State]) -> int:
-    """How many withheld numbers all editions together fix that the earlier ones did not. A number
+    """How many withheld numbers all states together fix that those before did not. A number
     that two editions share is taken to be known to be the same."""
     before = []
     for state in states:

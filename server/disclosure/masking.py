@@ -7,9 +7,9 @@ import numpy as np
 
 from engine.ages import AgeGrid, Array
 from server.disclosure.blocks import SEXES, TOTAL, Block, Bools, block
-from server.disclosure.closing import close
+from server.disclosure.closing import Closed, close
 from server.disclosure.equations import equations
-from server.disclosure.history import State, fresh_of, leaking, withheld_before
+from server.disclosure.history import State, fresh_of, leaking, public_of, withheld_before
 from server.disclosure.standing_in import stand_ins
 from server.store.records import Area, Hidden, Key, Mask, Terms, Vector
 
@@ -38,13 +38,19 @@ class Made:
 
 
 def mask(
-    areas: tuple[Area, ...], cells: Cells, terms: Terms, earlier: Sequence[Content] = ()
+    areas: tuple[Area, ...],
+    cells: Cells,
+    terms: Terms,
+    earlier: Sequence[Content] = (),
+    otherwise: Sequence[Content] = (),
 ) -> Made:
     """What is withheld of an edition of these areas and counts, when `earlier` editions of the
-    collection were shown as they were. A year that is as in one of them is shown as there."""
+    collection were shown as they were. A year that is as in one of them is shown as there.
+    `otherwise`: what other policies showed of the editions, which some reader may have kept."""
     shaped = coarsened(areas, cells, terms)
     by_period, before = _periods(shaped), [_periods(one.cells) for one in earlier]
     masks = [_hidden_periods(one.mask) for one in earlier]
+    shown = _shown_otherwise(otherwise)
     found: dict[Key, Hidden] = {}
     exposed = narrow = 0
     for period, own in sorted(by_period.items()):
@@ -57,7 +63,7 @@ def mask(
         if same is not None:
             found |= same.mask
             continue
-        made = _of_period(areas, period, own, terms, _distinct(states))
+        made = _of_period(areas, period, own, terms, _distinct(states), shown.get(period, ()))
         found |= made.mask
         exposed, narrow = exposed + made.exposed, narrow + made.narrow
     for key, vector in shaped.items():
@@ -110,8 +116,37 @@ def _distinct(states: Sequence[State]) -> list[State]:
     return kept
 
 
+def _shown_otherwise(contents: Sequence[Content]) -> dict[str, list[State]]:
+    """Each period as it was shown, on the ages it was shown by; the same state once."""
+    found: dict[str, list[State]] = {}
+    for one in contents:
+        cells = dict(one.cells)
+        for key, hidden in one.mask.items():
+            if key in cells and hidden.starts:
+                grid, vector = AgeGrid(hidden.starts), cells[key]
+                values = vector.grid.regroup(vector.values, grid)
+                cells[key] = replace(vector, grid=grid, values=values)
+        masks = _hidden_periods(one.mask)
+        for period, part in _periods(cells).items():
+            state, kept = (
+                State(one.areas, part, masks.get(period, {})),
+                found.setdefault(period, []),
+            )
+            if not any(
+                state.mask == other.mask and state.same_as(other.areas, other.cells)
+                for other in kept
+            ):
+                kept.append(state)
+    return found
+
+
 def _of_period(
-    areas: tuple[Area, ...], period: str, cells: Cells, terms: Terms, states: Sequence[State]
+    areas: tuple[Area, ...],
+    period: str,
+    cells: Cells,
+    terms: Terms,
+    states: Sequence[State],
+    shown: Sequence[State],
 ) -> Made:
     found: dict[Key, Hidden] = {}
     exposed = narrow = 0
@@ -132,10 +167,7 @@ def _of_period(
             continue
         fresh = fresh_of(of, period, measure, states)
         done = close(of, primary, sticky, fresh, threshold)
-        left = 0
-        if states and leaking(of, done.hidden, period, measure, states):
-            done.hidden |= fresh & of.held  # nothing new is shown of such a year
-            left = leaking(of, done.hidden, period, measure, states)
+        left = _kept_secret(of, done, primary, fresh, threshold, (period, measure, states, shown))
         exposed, narrow = exposed + max(len(done.exposed), left), narrow + len(done.narrow)
         if measure == "person_years":
             few = {key: done.hidden[slot] for key, slot in of.keys().items()}
@@ -143,6 +175,32 @@ def _of_period(
         found |= _by_schedule(of, period, measure, done.hidden, stand)
     found |= _of_the_same_people(cells, found)
     return Made(found, exposed, narrow)
+
+
+def _kept_secret(
+    of: Block,
+    done: Closed,
+    primary: Bools,
+    fresh: Bools,
+    threshold: float,
+    known: tuple[str, str, Sequence[State], Sequence[State]],
+) -> int:
+    """Withhold more, the least first, until the mask and all that was shown before tell nothing
+    that it withholds; how many numbers they tell in the end."""
+    period, measure, states, shown = known
+    every = [*states, *shown]
+    left = leaking(of, done.hidden, period, measure, every) if every else 0
+    if left and shown:  # what protects must not have been shown under another policy
+        secret = fresh & ~public_of(of, period, measure, shown)
+        done.hidden |= close(of, primary, done.hidden, secret, threshold).hidden
+        left = leaking(of, done.hidden, period, measure, every)
+    if left and shown:
+        done.hidden |= withheld_before(of, period, measure, shown)
+        left = leaking(of, done.hidden, period, measure, every)
+    if left and states:
+        done.hidden |= fresh & of.held  # nothing new is shown of such a year
+        left = leaking(of, done.hidden, period, measure, every)
+    return left
 
 
 def _primary(of: Block, threshold: float, *, zeros: bool) -> Bools:

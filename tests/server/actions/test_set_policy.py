@@ -1,6 +1,7 @@
 """A policy masks every edition, those that stand and those to come."""
 
 from dataclasses import replace
+from typing import Any
 
 import pytest
 
@@ -8,12 +9,13 @@ from engine.panel import Panel
 from server.accounts.viewer import LOCAL, NotAllowed, Viewer
 from server.actions import masking
 from server.actions.set_policy import effect_of, set_policy
+from server.disclosure.masking import Made, mask
 from server.results.loading import load
 from server.results.questions import PopulationYear
 from server.store import editions, masks, policies
 from server.store.connect import Session, transaction
 from server.store.errors import Refused, Stale
-from server.store.records import Change, Policy, Terms
+from server.store.records import Change, Mask, Policy, Terms
 from tests.factories import BASIS, NOON, edition, gompertz_panel
 
 SMALL = PopulationYear("rock", "f", "2014")
@@ -71,6 +73,24 @@ def test_another_threshold_is_another_policy(session: Session) -> None:
     assert [one.terms.threshold for one in policies.listing(session, "isle")] == [3, 5]
     fewer, more = (masks.of_editions(session, "isle", number)[1].cells for number in (2, 1))
     assert 0 < fewer < more
+
+
+def test_masks_are_made_beside_what_other_policies_showed(
+    session: Session, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    first(session)
+    set_to(session, threshold=5)
+    old = masks.of_editions(session, "isle", 1)[1].mask
+    beside: list[list[Mask]] = []
+
+    def noted(*given: Any) -> Made:
+        beside.append([one.mask for one in given[4]])
+        return mask(*given)
+
+    monkeypatch.setattr("server.actions.masking.mask", noted)
+    set_to(session, threshold=4)
+    edition(session, panels(7))
+    assert beside == [[old], [old]]
 
 
 def test_a_trial_writes_nothing(session: Session) -> None:

@@ -215,3 +215,28 @@ def test_small_areas_are_given_on_coarser_ages() -> None:
     assert made[Key("a0", "f", "2001", "deaths")].starts[:4] == (0, 1, 5, 10)
     seen = shown(cells[Key("a0", "f", "2001", "deaths")], made[Key("a0", "f", "2001", "deaths")])
     assert seen.values[2] == 250
+
+
+@pytest.mark.parametrize(("then", "now"), [(3, 5), (5, 4), (10, 5)])
+@pytest.mark.parametrize(("areas", "seed"), [(FLAT, 2), (FLAT, 3), (TREE, 0), (TREE, 4)])
+def test_another_policy_tells_nothing_that_the_one_before_withheld(
+    areas: tuple[Area, ...], seed: int, then: int, now: int
+) -> None:
+    """Whoever kept what the first one showed knows what stood beside each withheld count."""
+    cells = drawn(areas, seed=seed)
+    later = revised(cells, areas, seed)
+    old = Content(areas, cells, mask(areas, cells, Terms(threshold=then)).mask)
+    new = Content(areas, cells, mask(areas, cells, Terms(threshold=now), (), [old]).mask)
+    next_ = mask(areas, later, Terms(threshold=now), [new], [old]).mask
+    shown = [(areas, cells, one.mask) for one in (old, new)]
+    known = told(shown[:1])
+    assert told(shown) <= known
+    assert told([*shown, (areas, later, next_)]) <= known
+
+
+def test_a_looser_policy_shows_more() -> None:
+    cells = drawn(TREE, seed=1)
+    old = Content(TREE, cells, mask(TREE, cells, Terms(threshold=20)).mask)
+    new = mask(TREE, cells, Terms(threshold=3), (), [old]).mask
+    few, many = (sum(len(one.ages) for one in made.values()) for made in (new, old.mask))
+    assert few < many
