@@ -103,7 +103,7 @@ def questions() -> Iterator[Question]:
     for settings in SETTINGS:
         yield ContentsQuestion(settings=settings)
         yield _trend("e0", settings)
-    for indicator in INDICATORS:
+    for indicator in tuple(INDICATORS)[::3]:
         yield _trend(indicator, CHAINS[0])
 
 
@@ -136,7 +136,8 @@ def figures(reader: TestClient, place: str) -> bytes:
 def shown(
     reader: TestClient, asked: Iterable[Question], edition: int = EDITION
 ) -> dict[str, object]:
-    """All that the twins say of figures, by address: JSON and CSV as bytes, workbooks by sheet."""
+    """What the twins say of figures, by address: JSON and CSV (first and last table) as bytes,
+    workbooks by sheet."""
     found: dict[str, object] = {}
     for question in asked:
         json, xlsx, csv = (
@@ -145,7 +146,8 @@ def shown(
         )
         written = found[json] = figures(reader, json)
         found |= {f"{xlsx} {name}": rows for name, rows in sheets(reader.get(xlsx).content)}
-        for key in orjson.loads(written.removesuffix(b"}\n")):
+        keys = list(orjson.loads(written.removesuffix(b"}\n")))
+        for key in {keys[0], keys[-1]}:  # each asks for the page anew
             place = f"{csv}&table={key}"
             answer = reader.get(place)
             assert answer.status_code == 200, place
