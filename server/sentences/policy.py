@@ -53,7 +53,12 @@ def terms(of: Terms) -> str:
     if of.persons:
         told.append(_("deaths among fewer than {least} people", least=whole(of.persons)))
     if of.coarse_below:
-        told.append(_("single ages of areas below {people} people", people=whole(of.coarse_below)))
+        told.append(
+            _(
+                "single ages of areas below {people} people, and of all beside them",
+                people=whole(of.coarse_below),
+            )
+        )
     return "; ".join(told)
 
 
