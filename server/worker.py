@@ -18,9 +18,9 @@ SELDOM = 1_000_000  # new objects between two looks for circles: a job makes man
 
 def begin(url: str, language: str, job: Job, megabytes: int) -> None:
     """Do a claimed job; how it ended is written down in the job table."""
+    engine = make_engine(url)  # which loads the driver of the database
     limit(megabytes)
     gc.set_threshold(SELDOM)
-    engine = make_engine(url)
     new_session = sessions(engine)
     book = JobBook(new_session, lambda: dt.datetime.now(dt.UTC))
     with speaking(language):

@@ -164,7 +164,21 @@ def _may_be_word(first: tuple[str, ...], column: int) -> bool:
 
 
 def _read(file: Layout, types: dict[int, str]) -> pd.DataFrame:
-    table = pd.read_csv(
+    """Raises: ValueError where a number is none; MemoryError, which the reader of tables words as
+    an error of the table."""
+    try:
+        table = _table_of(file, types)
+    except pd.errors.ParserError as error:
+        if "out of memory" in str(error):
+            raise MemoryError from error
+        raise
+    if len(table) != len(file.ends):
+        raise AssertionError(f"{len(file.ends)} lines were cut but {len(table)} read")
+    return table
+
+
+def _table_of(file: Layout, types: dict[int, str]) -> pd.DataFrame:
+    return pd.read_csv(
         io.BytesIO(file.body),
         sep=file.delimiter,
         header=None,
@@ -178,9 +192,6 @@ def _read(file: Layout, types: dict[int, str]) -> pd.DataFrame:
         low_memory=False,
         decimal=file.form.decimal,
     )
-    if len(table) != len(file.ends):
-        raise AssertionError(f"{len(file.ends)} lines were cut but {len(table)} read")
-    return table
 
 
 def _labels(column: "pd.Series[object]") -> Labels:

@@ -72,6 +72,8 @@ class Bases:
 
 def rebased(bases: Bases) -> tuple[str, ...]:
     """Years already held that get a new population under the deaths that stand."""
+    if not bases.standing.held:
+        return ()
     deaths = {(key.area, key.period) for key in bases.handed if key.measure == "deaths"}
     held = bases.populations(bases.standing.held)
     new = bases.populations(bases.handed)
@@ -105,9 +107,10 @@ def _unnamed(bases: Bases) -> Iterator[Fault]:
 
 
 def _in_part(bases: Bases) -> Iterator[Fault]:
-    before, kept = bases.standing.basis, bases.kept
+    before = bases.standing.basis
     if not before or not bases.renewed or bases.own.vintage == before.vintage:
         return
+    kept = bases.kept
     first = min(year for _, year in bases.populations(bases.handed))
     stated = any(
         one.kind == "population" and one.period == first

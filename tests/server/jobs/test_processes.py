@@ -9,11 +9,16 @@ from functools import partial
 import pytest
 
 from server import worker
+from server.accounts.viewer import LOCAL
+from server.actions.map_upload import map_upload
+from server.actions.receive_upload import receive_upload
 from server.jobs.executor import TOO_LARGE, run
 from server.jobs.processes import DIED, STOPPED, TOO_LONG, Limits, Processes
+from server.store import uploads
 from server.store.connect import make_engine, sessions
 from server.store.jobs import JobBook
 from server.store.records import Job
+from tests.factories import BASIS, COLUMNS, counts_csv, stored_collection
 
 NOW = dt.datetime(2026, 12, 1, 12, tzinfo=dt.UTC)
 
@@ -115,3 +120,27 @@ def test_what_a_stopped_server_left_is_closed_by_the_next(db_url: str, book: Job
 def test_a_kind_of_work_that_is_not_known_is_refused(jobs: "Processes[Job]") -> None:
     with pytest.raises(ValueError, match="no work of kind 'paint'; the kinds are"):
         jobs.submit("paint", {})
+
+
+@pytest.mark.parametrize(
+    ("megabytes", "state", "message"), [(4, "failed", TOO_LARGE), (300, "done", "")]
+)
+def test_a_check_without_memory_ends_with_the_sentence_and_changes_nothing(
+    sqlite_url: str, megabytes: int, state: str, message: str
+) -> None:
+    engine = make_engine(sqlite_url)
+    book = JobBook(sessions(engine), lambda: NOW)
+    with sessions(engine)() as session:
+        stored_collection(session)
+        files = [("counts", "counts.csv", counts_csv(map("a{:04}".format, range(2_000))))]
+        upload = receive_upload(session, collection="saltmarsh", files=files, by=LOCAL, now=NOW)
+        mappings = {"counts": COLUMNS}
+        map_upload(session, upload_id=upload.id, mappings=mappings, basis=BASIS, by=LOCAL, now=NOW)
+        begin = partial(worker.begin, sqlite_url, "en")
+        limits = Limits(seconds=60, megabytes=megabytes)
+        jobs = Processes(book, ("check",), begin, limits, preload="server.worker")
+        ended = _ended(book, jobs.submit("check", {"upload": upload.id}))
+        assert (ended.state, ended.message) == (state, message)
+        session.rollback()
+        assert bool(uploads.find(session, upload.id).report) == (state == "done")
+    engine.dispose()
