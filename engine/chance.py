@@ -9,7 +9,7 @@ from scipy.special import ndtri
 
 from engine.ages import AgeGrid, Array
 from engine.chain import Chain, Tally, run
-from engine.count_limits import Interval, gamma_limits
+from engine.count_limits import Interval, dobson_limits, gamma_limits
 from engine.indicator import Indicator, Limits
 from engine.panel import Panel
 from engine.settings import Settings
@@ -192,7 +192,13 @@ def cautious(indicator: Indicator, person_years: Array) -> NDArray[np.bool_]:
 
 
 def limits(
-    kind: Limits, value: Array, chance: Chance, level: float, *, apart: bool = False
+    kind: Limits,
+    value: Array,
+    chance: Chance,
+    level: float,
+    *,
+    apart: bool = False,
+    rates: str = "gamma",
 ) -> Interval:
     """Limits of a number from the gamma laws of the deaths behind it.
 
@@ -205,7 +211,8 @@ def limits(
     most, so that the truth is never missed too often; for other numbers for half of one, as mid-p
     limits do, which comes nearest to the level (tests/studies/coverage.md). Persons counted wrongly
     widen both sides, as one more part that is independent of the deaths. Of two numbers `apart`,
-    the value is their difference, which may have any sign.
+    the value is their difference, which may have any sign. `rates` as in settings: "dobson" gives
+    rates, sums of deaths of positive weight, the limits of `dobson_limits`.
 
     Shape:   value [...], chance [..., count] -> [...] each.
     Source:  Fay & Feuer (1997), Statistics in Medicine 16, 791-801 (gamma limits); Fay & Kim
@@ -214,10 +221,16 @@ def limits(
     """
     own = KINDS[kind]
     with np.errstate(all="ignore"):
-        raised, lowered = (
-            _reach(np.maximum(sign * chance.weights, 0.0), chance.counts, level, own.more)
-            for sign in (1, -1)
-        )
+        if kind == "gamma" and rates == "dobson" and not apart:
+            total = (chance.weights * chance.counts).sum(axis=-1)
+            low, high = dobson_limits(chance.weights, chance.counts, level)
+            none = np.zeros_like(total)
+            raised, lowered = Interval(total - low, high - total), Interval(none, none)
+        else:
+            raised, lowered = (
+                _reach(np.maximum(sign * chance.weights, 0.0), chance.counts, level, own.more)
+                for sign in (1, -1)
+            )
         astray = float(ndtri((1 + level) / 2)) * chance.astray
         low = value - np.sqrt(_squares(raised.low, lowered.high, astray))
         high = value + np.sqrt(_squares(raised.high, lowered.low, astray))

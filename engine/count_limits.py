@@ -57,6 +57,22 @@ def gamma_limits(
     return Interval(low, np.where(np.isnan(low), np.nan, high))
 
 
+def dobson_limits(weights: Array, counts: Array, level: float) -> Interval:
+    """Limits of sum w D as far from it, in its standard errors, as the exact limits of the count of
+    all deaths are from that count in its own.
+
+    Shape:   weights, counts [..., count] -> [...] each.
+    Missing: nan without deaths.
+    Source:  Dobson, Kuulasmaa, Eberle & Scherer (1991), Confidence intervals for weighted sums of
+             Poisson parameters, Statistics in Medicine 10, 457-462.
+    """
+    value, all_ = (weights * counts).sum(axis=-1), counts.sum(axis=-1)
+    low, high = exact_limits(all_, level)
+    with np.errstate(all="ignore"):
+        per_death = np.sqrt((weights**2 * counts).sum(axis=-1) / all_)
+    return Interval(value + per_death * (low - all_), value + per_death * (high - all_))
+
+
 def _gamma_quantile(mean: Array, variance: Array, share: float) -> Array:
     """Quantile of the gamma law of this mean and variance.
 

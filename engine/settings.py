@@ -40,6 +40,7 @@ class Settings:
     sound_open_age: int = 0  # and below this one, with a caution
     # from which age on person-years are uncertain by how many per cent (one standard deviation)
     population_error: tuple[tuple[int, float], ...] = ()
+    rate_limits: str = "gamma"  # or "dobson": limits of rates
 
     @property
     def stages(self) -> tuple[Stage, ...]:
@@ -53,6 +54,7 @@ class Settings:
             Stage("Years lived by those who die: ages 1 to 4", CHILD[self.child]),
             Stage("Years lived by those who die: other ages", INSIDE[self.inside]),
             *([Stage("Intervals", self._intervals)] if self.population_error else []),
+            *([Stage("Intervals of rates", DOBSON)] if self.rate_limits == "dobson" else []),
         )
 
     @property
@@ -161,6 +163,12 @@ POPULATION_ERROR = (
     "Besides chance in deaths, intervals allow for person-years that are wrong {steps}, upwards or "
     "downwards alike (one standard deviation)."
 )
+DOBSON = (
+    "Limits of death rates, standardised ones too, lie as far from the rate, in its standard "
+    "errors, as the exact limits of the count of all deaths lie from that count (Dobson and "
+    "others, 1991). They are narrower than those of the gamma law, and with few deaths hold the "
+    "truth less often."
+)
 BOUND = (
     "Where the rate is so high that more would die than enter, all who enter die in the group "
     "after 1 / m years on average. In the single years of a fitted law the rate is constant within "
@@ -229,6 +237,12 @@ SETTINGS: dict[str, Settings] = {
             "Person-years uncertain by 2 %",
             "one_over_m",
             population_error=((0, 2.0),),
+        ),
+        Settings(
+            "almanac-1-dobson",
+            "Limits of death rates from the count of all deaths",
+            "one_over_m",
+            rate_limits="dobson",
         ),
         Settings(
             "almanac-2",

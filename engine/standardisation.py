@@ -1,13 +1,11 @@
 """Death rates weighted by the people of a standard, and deaths set against those expected."""
 
-from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
 from engine.ages import AgeGrid, Array
-from engine.count_limits import Interval, exact_limits, gamma_limits
 from engine.indicator import Indicator
 from engine.panel import Panel
 from engine.stages.rates import death_rates
@@ -100,38 +98,6 @@ def expected_deaths(exposure: Array, whole: Panel) -> Array:
         np.ascontiguousarray(whole.deaths), np.ascontiguousarray(whole.exposure)
     )
     return np.asarray((reference.mx * exposure).sum(axis=-1))
-
-
-def gamma(weights: Array, deaths: Array, level: float) -> Interval:
-    """Limits of sum w D by the gamma law, w what a death at each age weighs, [..., age] -> [...].
-
-    Source: Fay & Feuer (1997), Statistics in Medicine 16, 791-801.
-    """
-    value, variance = _moments(weights, deaths)
-    return gamma_limits(value, variance, weights.max(axis=-1), level)
-
-
-def dobson(weights: Array, deaths: Array, level: float) -> Interval:
-    """Limits of sum w D as far from it, in its standard errors, as the exact limits of the count of
-    deaths are from the count in its own, [..., age] -> [...].
-
-    Missing: nan without deaths.
-    Source:  Dobson, Kuulasmaa, Eberle & Scherer (1991), Confidence intervals for weighted sums of
-             Poisson parameters, Statistics in Medicine 10, 457-462.
-    """
-    value, variance = _moments(weights, deaths)
-    count = deaths.sum(axis=-1)
-    low, high = exact_limits(count, level)
-    with np.errstate(all="ignore"):
-        per_death = np.sqrt(variance / count)
-    return Interval(value + per_death * (low - count), value + per_death * (high - count))
-
-
-def _moments(weights: Array, deaths: Array) -> tuple[Array, Array]:
-    return (weights * deaths).sum(axis=-1), (weights**2 * deaths).sum(axis=-1)
-
-
-LIMITS: dict[str, Callable[[Array, Array, float], Interval]] = {"gamma": gamma, "dobson": dobson}
 
 
 def few_deaths(indicator: Indicator, deaths: Array) -> NDArray[np.bool_]:

@@ -65,7 +65,8 @@ def estimates(
     for one in indicators:
         if told(one):
             bare, chance = found[one.key], moved[one.key]
-            low, high = limits(one.unit.limits, bare.value, chance, settings.level)
+            kind, rates = one.unit.limits, settings.rate_limits
+            low, high = limits(kind, bare.value, chance, settings.level, rates=rates)
             found[one.key] = bare.within(low, high, chance.se, Reason.OFTEN_LOST)
     if streams is None:
         return found

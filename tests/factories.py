@@ -1,7 +1,7 @@
 """The only maker of test data. Each part of the system has its section; keep them small."""
 
 import datetime as dt
-from collections.abc import Collection, Iterable, Mapping
+from collections.abc import Callable, Collection, Iterable, Mapping
 from dataclasses import replace
 
 import numpy as np
@@ -9,6 +9,8 @@ from hypothesis import strategies as st
 from numpy.typing import ArrayLike, NDArray
 
 from engine.ages import AgeGrid, Array
+from engine.chance import Chance, limits
+from engine.count_limits import Interval
 from engine.panel import Panel
 from server.accounts.viewer import LOCAL
 from server.actions import masking, totals
@@ -70,6 +72,21 @@ def gompertz_panel(
     if seed is not None:
         deaths = np.random.default_rng(seed).poisson(deaths).astype(float)
     return Panel.of(grid, deaths, exposure, sex=sex)
+
+
+def rate_limits(rates: str) -> Callable[[Array, Array, float], Interval]:
+    """Limits of a rate, sum w D, of weights and deaths [..., age] at a level, as settings name
+    them."""
+
+    def limits_of(weights: Array, deaths: Array, level: float) -> Interval:
+        chance = Chance(weights, deaths, np.zeros(()))
+        value = (weights * deaths).sum(axis=-1)
+        return limits("gamma", value, chance, level, rates=rates)
+
+    return limits_of
+
+
+LIMITS = {name: rate_limits(name) for name in ("gamma", "dobson")}
 
 
 def persons_panel(grid: AgeGrid = GRIDS["abridged"], *, seed: int | None = None) -> Panel:

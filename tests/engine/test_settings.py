@@ -12,7 +12,7 @@ from engine.stages.smoothing import SMOOTHINGS
 
 pytestmark = pytest.mark.fast
 EVERY = pytest.mark.parametrize("settings", SETTINGS.values(), ids=SETTINGS)
-MOST = 12  # names that a reader can choose among
+MOST = 13  # names that a reader can choose among
 # What figures were published under: these entries and the defaults they rest on never change.
 FIRST = {
     "first_year": "andreev_kingkade",
@@ -92,6 +92,7 @@ def test_what_a_chain_does_besides_is_said() -> None:
     assert "below 75" in said("almanac-2")
     assert "by 2 % from age 0" in said("almanac-1-population-2")
     assert "smooth curve" in said("almanac-1-smooth")
+    assert "Dobson" in said("almanac-1-dobson")
 
 
 def test_the_years_that_are_added_up() -> None:

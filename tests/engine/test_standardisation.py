@@ -12,14 +12,14 @@ from numpy.testing import assert_allclose, assert_array_equal
 
 from engine.ages import AgeGrid, Array
 from engine.chain import run
-from engine.indicators import find
+from engine.count_limits import exact_limits
+from engine.indicators import estimates, find
 from engine.indicators.rates import FAMILY as RATES
 from engine.indicators.standardised import by_population, by_standard
 from engine.panel import Panel
 from engine.settings import SETTINGS
 from engine.stages.rates import Rates, death_rates
 from engine.standardisation import (
-    LIMITS,
     Weighted,
     crude,
     direct,
@@ -31,7 +31,7 @@ from engine.standardisation import (
 )
 from engine.standards import STANDARDS, Standard
 from tests.engine.stepping import complex_step, largest_error
-from tests.factories import GRIDS, gompertz_panel, panels
+from tests.factories import GRIDS, LIMITS, gompertz_panel, panels
 
 TO_85 = AgeGrid((0, 1, *range(5, 86, 5)))
 ODD = AgeGrid((0, 1, 3, 5, 12, 15, 25, 40, 45, 60, 65, 74, 80, 83))
@@ -308,3 +308,17 @@ def test_every_standard_has_a_weight_for_every_group() -> None:
 def test_a_population_without_its_standard_or_its_whole_has_no_rate() -> None:
     chain = run(gompertz_panel(GRIDS["abridged"], seed=1), SETTINGS["almanac-1"])
     assert np.isnan(by_population("isle.p.2010").value(chain))
+
+
+def test_settings_name_the_limits_of_rates() -> None:
+    panel = gompertz_panel(people=60_000, seed=3)
+    asked = [find(key) for key in ("asr_esp2013", "cdr", "e0")]
+    names = ("almanac-1", "almanac-1-dobson")
+    usual, dobson = (estimates(asked, panel, SETTINGS[name]) for name in names)
+    for key in ("asr_esp2013", "cdr"):
+        assert (usual[key].value, usual[key].se) == (dobson[key].value, dobson[key].se)
+    assert (usual["e0"].low, usual["e0"].high) == (dobson["e0"].low, dobson["e0"].high)
+    deaths, rate = panel.deaths.sum(), dobson["asr_esp2013"]
+    reach = (np.array(exact_limits(deaths, 0.95)) - deaths) * rate.se / np.sqrt(deaths)
+    assert_allclose((rate.low, rate.high), rate.value + reach, rtol=1e-9)
+    assert rate.high < usual["asr_esp2013"].high

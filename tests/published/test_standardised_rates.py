@@ -14,13 +14,13 @@ from engine.indicators.standardised import by_standard
 from engine.panel import Panel
 from engine.settings import SETTINGS
 from engine.standardisation import (
-    LIMITS,
     crude,
     direct,
     expected_deaths,
     observed_over_expected,
 )
 from engine.standards import STANDARDS
+from tests.factories import LIMITS
 from tests.published import denmark
 from tests.published.denmark import rows
 
