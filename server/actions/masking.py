@@ -35,18 +35,21 @@ def mask_of(session: Session, change: Change) -> Masked | None:
     trees = changes.tree(session, change.collection, known)
     before = masks.of_editions(session, change.collection, policy.number)
     earlier = [
-        Content(trees[number], _held(history, number), before[number].mask)
+        Content(
+            trees[number], _held(history, number), before[number].mask, before[number].unprotected
+        )
         for number in sorted(known)
     ]
     otherwise = _shown_otherwise(session, change.collection, policy.number, trees, history)
     base = {} if change.replace or not change.base else _held(history, change.base)
     cells = {key: cell for key, cell in base.items() if key not in change.ended}
     made = mask(change.areas, cells | dict(change.cells), policy.terms, earlier, otherwise)
-    kept = dict(made.mask)
+    kept, left = dict(made.mask), dict(made.unprotected)
     if not whole and change.base:
-        stays = before[change.base].mask
-        kept |= {key: one for key, one in stays.items() if key.period not in touched}
-    return Masked(policy, Kept(kept, made.exposed, made.narrow), tuple(sorted(known)))
+        stays = before[change.base]
+        kept |= {key: one for key, one in stays.mask.items() if key.period not in touched}
+        left |= {year: one for year, one in stays.unprotected.items() if year not in touched}
+    return Masked(policy, Kept(kept, left), tuple(sorted(known)))
 
 
 def keep(
@@ -80,8 +83,8 @@ def masks_under(session: Session, collection: str, terms: Terms) -> dict[int, Ke
     for number in numbers:
         cells = _held(history, number)
         made = mask(trees[number], cells, terms, earlier, otherwise)
-        earlier.append(Content(trees[number], cells, made.mask))
-        found[number] = Kept(made.mask, made.exposed, made.narrow)
+        earlier.append(Content(trees[number], cells, made.mask, made.unprotected))
+        found[number] = Kept(made.mask, made.unprotected)
     return found
 
 

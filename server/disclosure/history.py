@@ -1,7 +1,7 @@
 """What earlier editions showed of a period, and whether together they tell what each withholds."""
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from scipy.sparse import csr_array, identity, vstack
@@ -10,7 +10,7 @@ from scipy.sparse.linalg import splu
 from engine.ages import Array
 from server.disclosure.blocks import SEXES, TOTAL, Block, Bools, Ints, block
 from server.disclosure.equations import equations
-from server.store.records import Area, Hidden, Key, Vector
+from server.store.records import Area, Hidden, Key, Unprotected, Vector
 
 _DRAWS = 3
 _NOTHING = 1e-7  # of a drawn change: what rounding leaves where the equations allow none
@@ -18,17 +18,18 @@ _NOTHING = 1e-7  # of a drawn change: what rounding leaves where the equations a
 
 @dataclass(frozen=True, slots=True)
 class State:
-    """One period as an earlier edition had it."""
+    """One period as an edition has it."""
 
     areas: tuple[Area, ...]
     cells: Mapping[Key, Vector]
     mask: Mapping[Key, Hidden]
+    unprotected: Unprotected = field(default_factory=Unprotected)
 
     def same_as(self, areas: tuple[Area, ...], cells: Mapping[Key, Vector]) -> bool:
         """Whether it has the same tree and counts. (Status and names are no counts.)"""
-        tree = [(one.code, one.parent) for one in self.areas]
+        tree = {(one.code, one.parent) for one in self.areas}
         return (
-            tree == [(one.code, one.parent) for one in areas]
+            tree == {(one.code, one.parent) for one in areas}
             and self.cells.keys() == cells.keys()
             and all(
                 vector.grid == cells[key].grid

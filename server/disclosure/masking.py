@@ -1,7 +1,7 @@
 """One mask for all that an edition holds, under the terms of its collection."""
 
 from collections.abc import Iterable, Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
@@ -11,7 +11,7 @@ from server.disclosure.closing import Closed, close
 from server.disclosure.equations import equations
 from server.disclosure.history import State, fresh_of, leaking, public_of, withheld_before
 from server.disclosure.standing_in import stand_ins
-from server.store.records import Area, Hidden, Key, Mask, Terms, Vector
+from server.store.records import Area, Hidden, Key, Mask, Terms, Unprotected, Vector
 
 Cells = Mapping[Key, Vector]
 # people before deaths, since deaths of too few people are withheld; what each is judged by
@@ -26,15 +26,15 @@ class Content:
     areas: tuple[Area, ...]
     cells: Cells
     mask: Mask
+    unprotected: Mapping[str, Unprotected] = field(default_factory=dict)
 
 
 @dataclass(frozen=True, slots=True)
 class Made:
-    """A mask; of the counts in it that small ones, how many could not be protected as asked."""
+    """A mask, and which small counts of each period could not be protected as asked."""
 
     mask: Mask
-    exposed: int  # may be worked out all the same: no other count could protect them
-    narrow: int  # may be told apart from some counts below the threshold
+    unprotected: Mapping[str, Unprotected]
 
 
 def mask(
@@ -52,25 +52,29 @@ def mask(
     masks = [_hidden_periods(one.mask) for one in earlier]
     shown = _shown_otherwise(otherwise)
     found: dict[Key, Hidden] = {}
-    exposed = narrow = 0
+    left: dict[str, Unprotected] = {}
     for period, own in sorted(by_period.items()):
         states = [
-            State(one.areas, coarsened(one.areas, part, terms), hidden.get(period, {}))
+            State(
+                one.areas,
+                coarsened(one.areas, part, terms),
+                hidden.get(period, {}),
+                one.unprotected.get(period, Unprotected()),
+            )
             for one, parts, hidden in zip(earlier, before, masks, strict=True)
             if (part := parts.get(period))
         ]
-        same = next((one for one in states[::-1] if one.same_as(areas, own)), None)
-        if same is not None:
-            found |= same.mask
-            continue
-        made = _of_period(areas, period, own, terms, _distinct(states), shown.get(period, ()))
+        made = next((one for one in states[::-1] if one.same_as(areas, own)), None)
+        if made is None:
+            others = shown.get(period, ())
+            made = _of_period(areas, period, own, terms, _distinct(states), others)
         found |= made.mask
-        exposed, narrow = exposed + made.exposed, narrow + made.narrow
+        left |= {period: made.unprotected} if made.unprotected != Unprotected() else {}
     for key, vector in shaped.items():
         if vector.grid != cells[key].grid:
             known = found.get(key, Hidden((), ()))
             found[key] = replace(known, starts=vector.grid.starts)
-    return Made(found, exposed, narrow)
+    return Made(found, left)
 
 
 def coarsened(areas: Iterable[Area], cells: Cells, terms: Terms) -> Cells:
@@ -166,7 +170,7 @@ def _of_period(
     terms: Terms,
     states: Sequence[State],
     shown: Sequence[State],
-) -> Made:
+) -> State:
     found: dict[Key, Hidden] = {}
     exposed = narrow = 0
     few: dict[tuple[str, int, int], Bools] = {}  # slots of too few people
@@ -193,7 +197,7 @@ def _of_period(
         stand = stand_ins(of, done.hidden, equations(of), max(threshold / 2, 1.0))
         found |= _by_schedule(of, period, measure, done.hidden, stand)
     found |= _of_the_same_people(cells, found)
-    return Made(found, exposed, narrow)
+    return State(areas, cells, found, Unprotected(exposed, narrow))
 
 
 def _kept_secret(

@@ -6,7 +6,7 @@ import json
 import zlib
 from collections.abc import Iterable
 from collections.abc import Mapping as Lookup
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import lru_cache
 from typing import Any
 
@@ -16,16 +16,23 @@ from sqlalchemy.orm import Session
 from server.store import collections, policies, schedules, tables
 from server.store.errors import Refused
 from server.store.policies import read
-from server.store.records import Hidden, Key, Mask, Selection, Terms, Vector
+from server.store.records import Hidden, Key, Mask, Selection, Terms, Unprotected, Vector
 
 
 @dataclass(frozen=True, slots=True)
 class Kept:
-    """A mask as it is stored. `exposed`, `narrow`: small counts not protected as was asked."""
+    """A mask as it is stored, and by period the small counts not protected as was asked."""
 
     mask: Mask
-    exposed: int = 0
-    narrow: int = 0
+    unprotected: Lookup[str, Unprotected] = field(default_factory=dict)
+
+    @property
+    def exposed(self) -> int:
+        return sum(one.exposed for one in self.unprotected.values())
+
+    @property
+    def narrow(self) -> int:
+        return sum(one.narrow for one in self.unprotected.values())
 
     @property
     def cells(self) -> int:
@@ -175,7 +182,8 @@ def packed(kept: Kept) -> bytes:
         [*_codes(key), list(one.ages), list(one.values), list(one.starts)]
         for key, one in sorted(kept.mask.items())
     ]
-    text = json.dumps({"exposed": kept.exposed, "narrow": kept.narrow, "hidden": rows})
+    left = {period: [one.exposed, one.narrow] for period, one in sorted(kept.unprotected.items())}
+    text = json.dumps({"unprotected": left, "hidden": rows})
     return zlib.compress(text.encode(), 6)
 
 
@@ -191,4 +199,5 @@ def unpacked(content: bytes) -> Kept:
         Key(*row[:5]): Hidden(tuple(row[5]), tuple(row[6]), tuple(row[7]))
         for row in stored["hidden"]
     }
-    return Kept(mask, stored["exposed"], stored["narrow"])
+    left = {period: Unprotected(*numbers) for period, numbers in stored["unprotected"].items()}
+    return Kept(mask, left)

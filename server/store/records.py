@@ -245,6 +245,14 @@ Mask = Mapping[Key, Hidden]
 
 
 @dataclass(frozen=True, slots=True)
+class Unprotected:
+    """How many small counts of a period could not be protected as was asked."""
+
+    exposed: int = 0  # may be worked out all the same: no other count could protect them
+    narrow: int = 0  # may be told apart from some counts below the threshold
+
+
+@dataclass(frozen=True, slots=True)
 class Selection:
     """Which schedules to load; None: all there are."""
 

@@ -3,6 +3,7 @@
 from dataclasses import replace
 from typing import Any
 
+import numpy as np
 import pytest
 
 from engine.panel import Panel
@@ -91,6 +92,22 @@ def test_masks_are_made_beside_what_other_policies_showed(
     set_to(session, threshold=4)
     edition(session, panels(7))
     assert beside == [[old], [old]]
+
+
+def test_a_year_that_stays_keeps_what_could_not_be_protected_of_it(session: Session) -> None:
+    """Whether it was left alone, made again as it was, or is masked by a policy set later."""
+    told = {name: replace(one, exposure=np.round(one.exposure)) for name, one in panels().items()}
+    edition(session, told, parents={"north": "isle", "cape": "isle", "rock": "isle"})
+    set_to(session, threshold=100)
+    year = masks.of_editions(session, "isle", 1)[1].unprotected["2014"]
+    assert year.narrow > 0
+    edition(session, {f"rock.{sex}.2015": told[f"rock.{sex}.2014"] for sex in "fm"})
+    edition(session, told)
+    set_to(session, threshold=100)
+    for policy in (1, 2):
+        kept = masks.of_editions(session, "isle", policy)
+        assert [kept[number].unprotected["2014"] for number in (1, 2, 3)] == [year] * 3
+        assert kept[1].narrow == year.narrow < kept[2].narrow == kept[3].narrow
 
 
 def test_a_trial_writes_nothing(session: Session) -> None:
