@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from engine.ages import AgeGrid
-from server.actions.totals import merged, periods_needed, total, totalled
+from server.actions.totals import merged, periods_needed, total, totalled, totals
 from server.store.errors import Refused
 from server.store.records import Area, Key, Vector
 from tests.factories import cells
@@ -268,3 +268,14 @@ def test_a_whole_counts_no_deaths_of_a_part_whose_persons_came_anew_by_sex() -> 
     assert made.cells[key("w", "p")].values == [30.0]
     assert beside._replace(area="w") not in made.cells
     assert {beside, beside._replace(area="w")} <= made.ended
+
+
+@pytest.mark.parametrize("which", [0, 1])
+def test_a_sum_is_estimated_and_provisional_where_either_part_is(which: int) -> None:
+    grids = (AgeGrid((0, 1, 5)), AgeGrid((0, 1, 5)))
+    parts = [Vector("final", grid, np.array([1.0, 2.0, 3.0])) for grid in grids]
+    parts[which] = replace(parts[which], status="provisional", estimated=True)
+    same = [replace(part, grid=grids[0]) for part in parts]
+    for summed in totals({key("a"): parts, key("b"): same}).values():
+        assert (summed.status, summed.estimated) == ("provisional", True)
+        assert summed.values.tolist() == [2.0, 4.0, 6.0]

@@ -1,5 +1,8 @@
 """The same content has the same digest, another content another."""
 
+import hashlib
+import json
+import struct
 from dataclasses import replace
 
 import numpy as np
@@ -92,3 +95,24 @@ def test_what_is_no_vector_of_counts_is_refused() -> None:
         digests.canonical(np.array([1.0, np.inf]))
     with pytest.raises(ValueError, match=r"the axis age only; found the shape \(1, 2\)"):
         digests.canonical(np.array([[1.0, 2.0]]))
+
+
+def test_many_are_packed_as_each_alone_is_whatever_grid_object_they_have() -> None:
+    keys = [KEY._replace(period=str(year)) for year in range(2000, 2006)]
+    cells = {
+        key: Vector(
+            "provisional" if at % 2 else "final",
+            AgeGrid((0, 1, 5) if at < 4 else (0, 5, 10)),
+            np.array([1.0, 0.5, at]),
+            estimated=at == 3,
+        )
+        for at, key in enumerate(keys)
+    }
+    packed = digests.packed(cells)
+    assert packed.keys() == cells.keys()
+    for key, cell in cells.items():
+        words = ["schedule", *key, cell.status, cell.grid.code]
+        head = json.dumps(words + ["estimated"] * cell.estimated).encode()
+        vector = struct.pack("<3d", *cell.values)
+        assert packed[key] == (hashlib.sha256(head + b"\0" + vector).digest(), vector)
+        assert packed[key].digest == digests.of_schedule(key, cell)
