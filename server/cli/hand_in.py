@@ -26,7 +26,7 @@ from server.pages.upload_reading import earlier
 from server.results.preview import years_of
 from server.sentences import taking as taking_say
 from server.sentences import uploads as say
-from server.sentences.numbers import whole
+from server.sentences.numbers import as_needed
 from server.sentences.text import _, n_
 from server.store import collections, editions
 from server.store.connect import Session
@@ -99,7 +99,7 @@ def run(asked: argparse.Namespace, config: Config) -> int:
     files = reading.handed(asked, limit=config.upload_limit, before=_before(asked, config))
     report = Report.of(parse(files))
     for problem in report.problems:
-        print(problem.sentence(_, whole))
+        print(problem.sentence(_, as_needed))
     print(say.outcome(len(report.errors), len(report.warnings), report.rows, report.sound))
     if report.errors:
         print(_("Nothing was written."), file=sys.stderr)

@@ -17,6 +17,7 @@ from server.results.headlines import Headline
 from server.results.questions import address
 from server.sentences import basis, names
 from server.sentences import changes as say
+from server.sentences.numbers import whole
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
 from server.store.connect import Session
@@ -44,6 +45,7 @@ class ChangesPage(Page):
     template: ClassVar[str] = "changes/page.html"
     drawn: bool
     headline: bool  # whether any of the first headline moved
+    all_moved: str  # of the fold of where it moved; empty where the picture names every one
     others: str  # summary of the fold of other indicators; empty where none moved
     counts: str  # of the fold of counts
     parts: tuple[str, ...]  # keys of the further tables
@@ -79,6 +81,7 @@ def build(session: Session, heading: Heading, question: ChangesQuestion) -> Chan
         twins=frames.twins(heading, question),
         drawn=chart is not None,
         headline="headlines" in keys,
+        all_moved=_all_moved(found),
         others=_("Every other figure that moved") if "figures" in keys else "",
         counts=_("Counts that are others, by area, sex and year") if "counts" in keys else "",
         parts=tuple(key for key in tables.FURTHER if key in keys),
@@ -86,6 +89,13 @@ def build(session: Session, heading: Heading, question: ChangesQuestion) -> Chan
         further=_further(found),
         choice=_choice(found),
     )
+
+
+def _all_moved(found: Changes) -> str:
+    count = len(found.moves(OF))
+    if count <= DRAWN:
+        return ""
+    return _("All {count} areas, sexes and years where it moved", count=whole(count))
 
 
 def _changed(found: Changes) -> list[str]:

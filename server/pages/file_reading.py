@@ -11,7 +11,7 @@ from server.intake.recognising.look import Looked
 from server.pages.form_fields import Field, select, text
 from server.sentences import reading as say
 from server.sentences import reading_form as ask
-from server.sentences.numbers import whole
+from server.sentences.numbers import as_needed
 from server.sentences.text import _
 from server.store.records import UploadFile
 
@@ -52,7 +52,7 @@ def file_reading(file: UploadFile, looked: Looked, errors: dict[str, str]) -> Fi
             reading.encoding,
         ),
         notes=_notes(looked),
-        problems=tuple(problem.sentence(_, whole) for problem in reading.problems),
+        problems=tuple(problem.sentence(_, as_needed) for problem in reading.problems),
         kind=_kind(looked).wrong(errors),
         form=tuple(field.wrong(errors) for field in _form(looked)),
         form_open=bool(

@@ -29,7 +29,6 @@ class PolicyPage(Page):
     about_setting: str
     action: str
     fields: tuple[Field, ...]
-    trial: tuple[Field, ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,6 +37,7 @@ class Trial:
 
     terms: Terms
     kept: Mapping[int, Kept]
+    note: str = ""  # as typed so far
 
 
 def build(session: Session, code: str, trial: Trial | None = None) -> PolicyPage:
@@ -73,8 +73,7 @@ def build(session: Session, code: str, trial: Trial | None = None) -> PolicyPage
         how=say.how(),
         about_setting=say.about_setting(),
         action=place,
-        fields=(*_fields(terms), Field("text", "note", _("Why, in a sentence"), required=True)),
-        trial=_fields(terms),
+        fields=(*_fields(terms), _why(trial.note if trial else "")),
     )
 
 
@@ -130,6 +129,10 @@ def _marks() -> Table:
         tuple(Row(row) for row in rows),
         say.about_marks(),
     )
+
+
+def _why(note: str) -> Field:
+    return Field("text", "note", _("Why, in a sentence"), note, required=True)
 
 
 def _fields(terms: Terms) -> tuple[Field, ...]:

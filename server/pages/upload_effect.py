@@ -55,7 +55,10 @@ def effect(shown: Preview, report: Report, number: int) -> Effect:
 
 
 def _years(years: tuple[Yearly, ...], key: str) -> Table:
-    """Totals of every year that changes."""
+    """Totals of every year that changes; of a first edition there is nothing to set beside them."""
+    before = [side[0] for year in years for side in (year.deaths, year.person_years)]
+    if not any(map(math.isfinite, before)):
+        return _first(years, key)
     heads = [Column("year", _("year"))]
     for name, label in (("deaths", _("deaths")), ("person_years", _("person-years"))):
         heads += [
@@ -67,8 +70,24 @@ def _years(years: tuple[Yearly, ...], key: str) -> Table:
         Row((year.period, *_pair(year.deaths), *_pair(year.person_years)))
         for year in reversed(years)
     )
-    note = _("Totals over the whole collection, each person counted once.")
-    return Table(key, _("Deaths and person-years by year"), tuple(heads), tuple(rows), note)
+    return Table(key, _("Deaths and person-years by year"), tuple(heads), tuple(rows), _whose())
+
+
+def _first(years: tuple[Yearly, ...], key: str) -> Table:
+    heads = (
+        Column("year", _("year")),
+        Column("deaths_after", _("deaths"), decimals=0),
+        Column("person_years_after", _("person-years"), decimals=0),
+    )
+    rows = (
+        Row((year.period, _pair(year.deaths)[1], _pair(year.person_years)[1]))
+        for year in reversed(years)
+    )
+    return Table(key, _("Deaths and person-years by year"), heads, tuple(rows), _whose())
+
+
+def _whose() -> str:
+    return _("Totals over the whole collection, each person counted once.")
 
 
 def _pair(pair: tuple[float, float]) -> tuple[Cell, ...]:

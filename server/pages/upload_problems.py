@@ -14,7 +14,7 @@ from server.pages.upload_effect import Effect, effect
 from server.results.preview import Preview
 from server.sentences import methods, reading, small_tables
 from server.sentences import uploads as say
-from server.sentences.numbers import whole
+from server.sentences.numbers import as_needed
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
 from server.store import collections, editions, uploads
@@ -125,8 +125,8 @@ def _listing(key: str, title: str, problems: tuple[Problem, ...]) -> Listing:
 
 
 def _cells(problem: Problem) -> tuple[str, ...]:
-    words = problem.worded(_, whole)
-    rows = problem.rows_worded(_, whole)
+    words = problem.worded(_, as_needed)
+    rows = problem.rows_worded(_, as_needed)
     return (rows or _("all"), problem.column, words.found, words.expected, words.remedy)
 
 

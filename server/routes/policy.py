@@ -33,12 +33,12 @@ def show_policy(
     if twin or not request.query_params:
         return show(request, lambda: page.build(session, known.code), tag_parts=(known,), twin=twin)
     viewer.require(Right.ADMINISTER)
-    given = keys(request, *FIELDS)
+    given = keys(request, *FIELDS, "note")
     try:
         terms = read(given)
     except ValueError as error:
         raise BadValue(str(error)) from error
-    trial = Trial(terms, effect_of(session, known.code, terms))
+    trial = Trial(terms, effect_of(session, known.code, terms), given.get("note", ""))
     return respond(request, lambda: page.build(session, known.code, trial), tag_parts=(known,))
 
 

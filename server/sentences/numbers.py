@@ -48,6 +48,16 @@ def whole(value: float) -> str:
     return number(value, 0)
 
 
+def as_needed(value: float) -> str:
+    """A number that is a count in one sentence and a ratio in another: two decimals at most.
+
+    >>> as_needed(94011.0), as_needed(0.8), as_needed(1.25)
+    ('94,011', '0.8', '1.25')
+    """
+    text = number(value, 2)
+    return text.rstrip("0").rstrip(".")
+
+
 def interval(low: float, high: float, decimals: int, *, signed: bool = False) -> str:
     """The limits of an interval, without brackets.
 

@@ -2,7 +2,7 @@
 
 import re
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 _BLANKS = " \u00a0\u2009\u202f"
 _PARTS = f"{_BLANKS}'\u2019.,"
@@ -31,13 +31,23 @@ def is_number(text: str) -> bool:
 
 
 def marks(texts: Iterable[str], *, counts: bool = True) -> Marks:
-    """The signs that read all of some numbers.
+    """The signs that read all of some numbers, as a form states them: a blank for all blanks.
 
     Two different marks in one number, the same mark twice, or other than three digits behind one
     settle it. Where only such as "1.234" stand, both readings are possible: of `counts`, which are
     whole, the mark of thousands is proposed.
     """
-    numbers = [text.strip() for text in texts if is_number(text)]
+    found = _written([text.strip() for text in texts if is_number(text)], counts=counts)
+    decimal, thousands = map(_stated, found.otherwise)
+    return replace(found, thousands=_stated(found.thousands), otherwise=(decimal, thousands))
+
+
+def _stated(mark: str) -> str:
+    return " " if mark and mark in _BLANKS else "'" if mark == "\u2019" else mark
+
+
+def _written(numbers: list[str], *, counts: bool) -> Marks:
+    """With the marks as they stand in the texts."""
     doubtful: list[tuple[str, str]] = []
     thousands = ""
     for text in numbers:

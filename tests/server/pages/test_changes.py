@@ -85,6 +85,25 @@ def test_rows_lead_to_why_and_the_picture_is_in_their_order(isle: Session) -> No
     )
 
 
+def test_a_long_list_is_folded_under_its_picture(session: Session) -> None:
+    assert page(_revised(session, 20)).all_moved == ""
+
+
+def test_and_says_how_long_it_is(session: Session) -> None:
+    built = page(_revised(session, 21))
+    assert built.all_moved == "All 21 areas, sexes and years where it moved"
+    assert len(built.table("headlines").rows) == 21
+    assert len(built.charts[0].series[0].x) == 20
+
+
+def _revised(session: Session, years: int) -> Session:
+    """Every year of one area is another."""
+    for level in (2e-5, 3e-5):
+        panel = gompertz_panel(level=level)
+        edition(session, {f"north.f.{1990 + year}": panel for year in range(years)})
+    return session
+
+
 def test_a_withdrawn_edition_says_so(isle: Session) -> None:
     withdrawn(isle, 3, "isle")
     assert [notice.word for notice in page(isle, 3).frame.notices] == ["Withdrawn"]

@@ -6,13 +6,16 @@ import pytest
 
 from server.accounts.viewer import LOCAL
 from server.actions.commit_upload import commit_upload
+from server.actions.preview_upload import preview_upload
 from server.actions.receive_upload import receive_upload
+from server.exports.table import Table
 from server.intake.mapping import Mapping
 from server.pages import upload_new, upload_problems, upload_reading, uploads
 from server.pages.form_fields import Field
 from server.sentences.pieces import plain
 from server.store.connect import Session
 from server.store.errors import Missing, Refused
+from server.store.records import Taking
 from tests.factories import BASIS, COLUMNS, NOON, checked_upload, counts_csv, stored_collection
 from tests.server.intake.workbooks import xlsx
 
@@ -176,6 +179,24 @@ def test_a_sound_upload_says_what_was_understood(salt: Session) -> None:
     assert built.making is not None
     assert built.making.possible
     assert built.making.button == "Make edition 1"
+
+
+def _effect(session: Session, upload: int) -> Table:
+    shown = preview_upload(session, upload_id=upload, taking=Taking(), by=LOCAL)
+    making = upload_problems.build(session, upload, shown).making
+    assert making is not None
+    assert making.effect is not None
+    (years,) = making.effect.years.tables
+    return years
+
+
+def test_nothing_stands_before_a_first_edition(salt: Session) -> None:
+    upload = checked_upload(salt, counts_csv())
+    years = _effect(salt, upload.id)
+    assert [one.key for one in years.columns] == ["year", "deaths_after", "person_years_after"]
+    commit_upload(salt, upload_id=upload.id, note="first", by=LOCAL, now=NOON)
+    later = checked_upload(salt, counts_csv().replace(b",30,", b",31,", 1))
+    assert len(_effect(salt, later.id).columns) == 7
 
 
 def test_the_list_says_where_each_upload_stands(salt: Session) -> None:

@@ -23,6 +23,14 @@ def test_a_trial_sets_nothing(reader: TestClient) -> None:
     assert "has no policy" in reader.get(PLACE).text
 
 
+def test_one_form_tries_and_sets_and_keeps_what_was_typed(reader: TestClient) -> None:
+    tried = reader.get(PLACE, params=TERMS | {"note": "As was decided."}).text
+    main = tried.partition("<main")[2]
+    assert main.count('name="threshold"') == 1
+    assert 'value="As was decided."' in main
+    assert 'formmethod="get" formnovalidate>Say what it would withhold' in main
+
+
 def test_a_policy_is_set_and_pages_withhold(reader: TestClient) -> None:
     place = "/c/isle/1/population-year?of=rock.f.2014&figures={}&settings=almanac-1"
     before = reader.get(place.format("released"))
