@@ -5,7 +5,7 @@ import datetime as dt
 from server.accounts.viewer import Right, Viewer
 from server.actions.receive_upload import LARGEST, File, taken
 from server.store import uploads
-from server.store.connect import Session, transaction
+from server.store.connect import Session, scrub, transaction
 from server.store.errors import Missing
 from server.store.records import Upload
 
@@ -19,7 +19,8 @@ def correct_upload(
     now: dt.datetime,
     limit: int = LARGEST,
 ) -> Upload:
-    """The draft it corrects is thrown away. All or nothing; nothing is checked yet.
+    """The draft it corrects is thrown away, so that the bytes of its file are gone from the
+    database's files. All or nothing; nothing is checked yet.
 
     Raises: NotAllowed; Missing for the upload or the file's role; FileTooLarge; Refused where the
     upload has become an edition.
@@ -38,7 +39,8 @@ def correct_upload(
     with transaction(session):
         new = uploads.receive(session, collection=old.collection, files=files, by=by.name, at=now)
         uploads.erase(session, upload_id)
-        if old.basis is None:
-            return new
-        mappings = {one.role: one.mapping for one in old.files}
-        return uploads.set_mapping(session, new.id, mappings=mappings, basis=old.basis)
+        if old.basis is not None:
+            mappings = {one.role: one.mapping for one in old.files}
+            new = uploads.set_mapping(session, new.id, mappings=mappings, basis=old.basis)
+    scrub(session)
+    return new

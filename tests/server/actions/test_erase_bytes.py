@@ -9,6 +9,7 @@ from sqlalchemy.orm import Session, sessionmaker
 
 from server.accounts.viewer import LOCAL, NotAllowed, Right, Viewer
 from server.actions.commit_upload import commit_upload
+from server.actions.correct_upload import correct_upload
 from server.actions.discard_upload import discard_upload
 from server.actions.erase_bytes import Erased, erase_bytes
 from server.actions.rebuild_editions import rebuild_editions
@@ -90,9 +91,16 @@ def test_a_reader_at_work_is_told_of(
     assert kept(engine) == []
 
 
-def test_a_discarded_draft_leaves_nothing_behind(session: Session, engine: Engine) -> None:
+@pytest.mark.parametrize("way", ["discarded", "corrected"])
+def test_a_draft_thrown_away_leaves_nothing_behind(
+    session: Session, engine: Engine, way: str
+) -> None:
     upload = checked_upload(session, personal().replace(NAME, b"Ermintrude Overwater"))
-    discard_upload(session, upload_id=upload.id, by=LOCAL)
+    if way == "discarded":
+        discard_upload(session, upload_id=upload.id, by=LOCAL)
+    else:
+        file = ("counts", "counts.csv", counts_csv())
+        correct_upload(session, upload_id=upload.id, file=file, by=LOCAL, now=NOON)
     if engine.dialect.name == "sqlite":
         path = Path(engine.url.database or "")
         found = list(path.parent.glob(f"{path.name}*"))
