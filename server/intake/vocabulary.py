@@ -80,7 +80,6 @@ MONTHS += "maneder|manad|manader|miesiac|miesiace|miesiecy"
 DAYS = "day|days|jour|jours|tag|tage|tagen|dia|dias|giorno|giorni|dag|dagen|dage|dager|dagar|"
 DAYS += "dzien|dni"
 ONE = "one|un|une|uno|una|um|uma|ein|eine|einem|einen|einer|een|en|et|ett|jeden|jednego"
-ZERO = "zero|null|nul|noll|nulla|cero"
 FROM = "from|de|desde|da|dai|dal|von|van|fra|fran|od|d'"
 TO = "to|till|til|through|thru|until|a|au|bis|ate|hasta|al|tot en met|t/m|do"
 BELOW_END = (

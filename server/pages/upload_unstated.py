@@ -9,8 +9,6 @@ from server.pages.contents_tables import Listing
 from server.sentences import sharing as say
 from server.sentences.text import _
 
-SHARED = ("sex", "age", "area")
-
 
 def said(report: Report) -> str:
     """Above the table; empty where all counts state all."""

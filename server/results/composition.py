@@ -17,7 +17,6 @@ from server.store.connect import Session
 from server.store.records import Area, Key, Vector
 
 Cells = Mapping[Key, Vector]
-Tree = tuple[Area, ...]
 
 
 def since(session: Session, collection: str, then: int, now: int) -> tuple[Successions, ...]:

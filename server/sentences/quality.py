@@ -1,6 +1,6 @@
 """What is said of how good the counts of an edition are."""
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 
 from server.sentences.numbers import number, whole
 from server.sentences.pieces import Piece, Sentence, phrase
@@ -141,25 +141,6 @@ def key_of_marks(signs: str) -> Pairs:
         (HELD["people"], _("a population without deaths")),
     )
     return tuple(pair for pair in known if pair[0] in signs)
-
-
-def marks_worded(held: str, provisional: bool, estimated: bool, doubts: Sequence[str]) -> str:
-    """An area and year in words, for files and for those who do not see the signs."""
-    words: Mapping[str, str] = {
-        "complete": _("complete"),
-        "part": _("in part"),
-        "deaths": _("deaths only"),
-        "people": _("population only"),
-        "none": _("nothing"),
-    }
-    told = [words[held]]
-    told += [_("provisional")] * provisional + [_("estimated")] * estimated
-    found = {
-        "years": _("stands out among the years"),
-        "ages": _("doubt about sexes or ages"),
-        "completeness": _("doubt about completeness"),
-    }
-    return ", ".join(told + [found[one] for one in DOUBTS if one in doubts])
 
 
 def areas(codes: Sequence[str], all_: int) -> str:
