@@ -1,5 +1,6 @@
 """How the files of an upload are read, shown for correction, and what is asked about the counts."""
 
+from collections.abc import Collection
 from collections.abc import Mapping as Mapped
 from dataclasses import dataclass, field, replace
 from typing import Any, ClassVar
@@ -46,23 +47,28 @@ class UploadReadingPage(Page):
     asked: Asked
 
 
-def looked_at(session: Session, upload: Upload, answers: Answers | None) -> tuple[Looked, ...]:
-    """Each file as was answered, else as stated before, else as likely. Refused for an edition."""
+def looked_at(
+    session: Session, upload: Upload, answers: Answers | None, moved: Collection[str] = ()
+) -> tuple[Looked, ...]:
+    """Each file as was answered, else as stated before, else as likely. Of those `moved` to another
+    role no more is asked what they hold. Refused for an edition."""
     _require_draft(upload)
     found = []
     for file in upload.files:
         said = answers.files.get(file.role) if answers else None
         if said is None and file.mapping:
             said = said_in(Mapping.from_json(file.mapping), file.role)
-        found.append(
-            look(
-                uploads.file_bytes(session, upload.id, file.role),
-                file.name,
-                file.role,
-                said,
-                () if said else earlier(session, upload.collection, file.role),
-            )
+        looked = look(
+            uploads.file_bytes(session, upload.id, file.role),
+            file.name,
+            file.role,
+            said,
+            () if said else earlier(session, upload.collection, file.role),
         )
+        if file.role in moved:
+            rest = tuple(question for question in looked.open if question != "kind")
+            looked = replace(looked, open=rest)
+        found.append(looked)
     return tuple(found)
 
 

@@ -14,7 +14,7 @@ from server.routes.forms import FormDep
 from server.routes.reading_form import answers, roles_said
 from server.routes.uploads import check
 from server.store import uploads
-from server.web.render import READ, redirect, render
+from server.web.render import READ, render
 
 router = APIRouter()
 
@@ -33,9 +33,11 @@ def answer(
     draft = uploads.find(session, upload)
     texts = {key: value for key, value in form.items() if isinstance(value, str)}
     roles = roles_said(texts, [file.role for file in draft.files])
-    if any(old != new for old, new in roles.items()):
-        sort_files(session, upload_id=upload, roles=roles, by=viewer)
-        return redirect(f"/uploads/{upload}/reading", status=303)
+    if moved := [new for old, new in roles.items() if old != new]:
+        draft = sort_files(session, upload_id=upload, roles=roles, by=viewer)
+        said = answers(texts, (role for role in roles.values() if role not in moved))
+        looked = page.looked_at(session, draft, said, moved)
+        return render(request, page.build(session, upload, looked, said))
     said = answers(texts, roles)
     looked = page.looked_at(session, draft, said)
     if "again" in texts or any(one.changed for one in looked):

@@ -144,10 +144,15 @@ def test_answers_that_cannot_be_understood_are_told(
 def test_what_a_file_holds_can_be_put_right(blank: TestClient, place: str) -> None:
     sent = form_of(blank.get(place).text)
     exchanged = {"deaths.role": "population", "population.role": "deaths"}
-    assert blank.post(place, data=sent | exchanged).status_code == 303
-    page = blank.get(place).text
+    answer = blank.post(place, data=sent | exchanged | {"source": "The register"})
+    assert answer.status_code == 200
+    page = answer.text
     assert "population: deaths.csv" in page
     assert "deaths: table2.txt" in page
+    assert "The files do not say by themselves: what it holds" not in page  # it was just said
+    kept = form_of(page)
+    assert (kept["deaths.role"], kept["population.role"]) == ("deaths", "population")
+    assert kept["source"] == "The register"
     both = blank.post(place, data=form_of(page) | {"deaths.role": "population"})
     assert both.status_code == 409
     assert "2 files were handed in as population" in both.text
@@ -207,7 +212,7 @@ def test_a_file_that_moves_is_recognised_anew(blank: TestClient, place: str) -> 
     assert blank.post(place, data=sent).status_code == 303
     assert blank.get(f"{place.removesuffix('/reading')}/problems").status_code == 200
     exchanged = {"deaths.role": "population", "population.role": "deaths"}
-    assert blank.post(place, data=sent | exchanged).status_code == 303
+    assert blank.post(place, data=sent | exchanged).status_code == 200
     page = form_of(blank.get(place).text)
     assert page["population.sex.0"] == ""  # what was said of it as deaths holds no longer
     assert blank.get(f"{place.removesuffix('/reading')}/problems").status_code == 302
