@@ -70,6 +70,14 @@ def test_a_typed_split_and_a_year_of_shock_stand_on_the_pages(reader: TestClient
     assert "are estimated" not in whole
 
 
+def test_a_break_may_speak_of_what_a_heading_could(reader: TestClient) -> None:
+    note = "New register of people"
+    typed = {"breaks.1.year": "2013", "breaks.1.kind": "population", "breaks.1.note": note}
+    place = handed_in(reader, **typed)
+    assert "cannot be read" not in reader.get(f"{place}/reading").text
+    assert note in reader.get(committed(reader, place), follow_redirects=True).text
+
+
 def test_a_mistake_in_what_is_typed_is_named_with_its_row(reader: TestClient) -> None:
     place = handed_in(reader, **(SPLIT | {"areas.2.share": "0.7"}))
     assert reader.post(f"{place}/reading", data=BASIS).status_code == 303
