@@ -132,7 +132,7 @@ def _marks() -> Table:
 
 
 def _why(note: str) -> Field:
-    return Field("text", "note", _("Why, in a sentence"), note, required=True)
+    return Field("text", "note", _("Why, in a sentence"), note, width="wide", required=True)
 
 
 def _fields(terms: Terms) -> tuple[Field, ...]:
