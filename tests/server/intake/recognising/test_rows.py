@@ -69,7 +69,7 @@ TITLE = [("Deaths in Fenwold",), (), ("Source: civil register", "", "", "")]
         ([("Kreis", "Alter", "Anzahl"), ("Nord", "0", "4"), ("", "1", "6")], 1, 1),
         # names and years of small tables are none either
         ([("area", "year", "kind", "note"), ("", "2021", "population", "other people")], 1, 1),
-        ([("code", "becomes"), ("deaths", "population")], 1, 1),
+        ([("kind", "year"), ("population", "2021")], 1, 1),
         ([("Areas",), ("code", "becomes", "name"), ("", "deaths", "population")], 2, 1),
     ],
 )
