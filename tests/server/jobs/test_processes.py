@@ -53,11 +53,17 @@ def book(db_url: str) -> Iterator[JobBook]:
     engine.dispose()
 
 
+AT_ONCE = 2
+
+
 @pytest.fixture
-def jobs(db_url: str, book: JobBook) -> "Processes[Job]":
+def jobs(db_url: str, book: JobBook) -> Iterator["Processes[Job]"]:
     kinds = ("count", "sleep", "grow", "die")
-    limits = Limits(seconds=30, megabytes=300)
-    return Processes(book, kinds, partial(_work, db_url), limits, preload="server.worker")
+    limits, begin = Limits(seconds=30, megabytes=300), partial(_work, db_url)
+    made = Processes(book, kinds, begin, limits, preload="server.worker", at_once=AT_ONCE)
+    yield made
+    for _ in range(AT_ONCE):  # its watchers are done before their database goes
+        assert made._free.acquire(timeout=30)
 
 
 def _ended(book: JobBook, number: int) -> Job:
