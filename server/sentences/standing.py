@@ -29,10 +29,11 @@ def superseded(shown: int, newer: Piece, headline: Headline) -> Sentence:
             _("{stays} {newer} has no figure to set beside this one."), stays=stays, newer=newer
         )
     unit = headline.unit
-    decimals = unit.decimals + 1  # what a revision moves is small
-    here, there = (
-        as_printed(unit.scale * value, decimals) for value in (headline.here, headline.there)
-    )
+    both = [unit.scale * value for value in (headline.here, headline.there)]
+    # what a revision moves is small; figures given to fixed decimals have no more of them
+    fixed = all(as_printed(value, unit.decimals) == round(value, 9) for value in both)
+    decimals = unit.decimals if fixed else unit.decimals + 1
+    here, there = (as_printed(value, decimals) for value in both)
     moved = number(abs(there - here), decimals)
     values: dict[str, Piece | str] = {
         "stays": stays,

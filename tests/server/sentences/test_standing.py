@@ -18,7 +18,8 @@ NEWER = Piece("Edition 4 of 2 September 2014", "/there")
         ("e0", 82.03, 82.05, "gives 0.02 more here. Figure: 82.05 there, 82.03 on this page."),
         ("e0", 82.03, 81.9, "gives 0.13 less here. Figure: 81.90 there, 82.03 on this page."),
         ("e0", 82.03, 82.0301, "gives the same here (Figure: 82.03)."),
-        ("ageing_rate", 0.1, 0.101, "gives 0.10 more here. Figure: 10.10 there, 10.00 on"),
+        ("ageing_rate", 0.1002, 0.1013, "gives 0.11 more here. Figure: 10.13 there, 10.02 on"),
+        ("ageing_rate", 0.1, 0.101, "gives 0.1 more here. Figure: 10.1 there, 10.0 on"),
         ("e0", 82.03, np.nan, "has no figure to set beside this one."),
     ],
 )
