@@ -72,13 +72,18 @@ def handed(session: Session, upload: Upload) -> list[Handed]:
 
 def require_checkable(upload: Upload) -> None:
     """Raises: Refused where it is an edition already, or a file has no mapping yet."""
+    require_draft(upload)
+    _require_mapped(upload)
+
+
+def require_draft(upload: Upload) -> None:
+    """Raises: Refused where it is an edition already."""
     if upload.edition is not None:
         raise Refused(
             "Upload {upload} is edition {edition} already.",
             upload=upload.id,
             edition=upload.edition,
         )
-    _require_mapped(upload)
 
 
 def _require_mapped(upload: Upload) -> None:

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from server.accounts.viewer import Right, Viewer
 from server.actions import masking
-from server.actions.check_upload import handed
+from server.actions.check_upload import handed, require_draft
 from server.actions.laid_over import Base, made_of
 from server.intake.parsing import READER, Parsed, parse
 from server.intake.problems import Problem
@@ -92,12 +92,7 @@ def require_ready(session: Session, *, upload_id: int, note: str, by: Viewer) ->
 
 def require_sound(upload: Upload) -> Sound:
     """The upload as one that may become an edition. Raises: Refused, saying what is missing."""
-    if upload.edition is not None:
-        raise Refused(
-            "Upload {upload} is edition {edition} already.",
-            upload=upload.id,
-            edition=upload.edition,
-        )
+    require_draft(upload)
     if upload.basis is None or upload.base is None or upload.reader != READER:
         raise Refused(
             "Upload {upload} has not been checked as it stands now. Map its columns, state the "

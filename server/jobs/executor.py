@@ -1,7 +1,7 @@
 """The seam between asking for work and doing it. The job table is the truth; an executor only
 decides where and when the work runs."""
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Collection, Mapping
 from typing import Any, Protocol, TypeVar
 
 # closing messages of a job, texts of the catalogue
@@ -66,12 +66,17 @@ class Inline:
         self._book, self._works = book, works
 
     def submit(self, kind: str, params: Mapping[str, Any]) -> int:
-        if kind not in self._works:
-            raise ValueError(f"no work of kind {kind!r}; the kinds are {sorted(self._works)}")
+        require_kind(kind, self._works)
         queued = self._book.queue(kind, params)
         if job := self._book.claim(queued.id):
             run(self._book, job, self._works[kind], params)
         return int(queued.id)
+
+
+def require_kind(kind: str, kinds: Collection[str]) -> None:
+    """Raises: ValueError where there is no such kind of work, listing those there are."""
+    if kind not in kinds:
+        raise ValueError(f"no work of kind {kind!r}; the kinds are {sorted(kinds)}")
 
 
 def run(book: Book[Entry], job: Entry, work: Work, params: Mapping[str, Any]) -> None:

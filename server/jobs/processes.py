@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from multiprocessing.process import BaseProcess
 from typing import Any, Generic
 
-from server.jobs.executor import Book, Entry
+from server.jobs.executor import Book, Entry, require_kind
 
 WATCHED = 0.1  # seconds between two looks at a job
 
@@ -56,8 +56,7 @@ class Processes(Generic[Entry]):
     def submit(self, kind: str, params: Mapping[str, Any]) -> int:
         """Queue the work and see that it is done; gives the job's number. ValueError where there
         is no such kind."""
-        if kind not in self._kinds:
-            raise ValueError(f"no work of kind {kind!r}; the kinds are {sorted(self._kinds)}")
+        require_kind(kind, self._kinds)
         number = self._book.queue(kind, params).id
         threading.Thread(target=self._see_to, args=(number,), daemon=True).start()
         return number
