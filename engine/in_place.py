@@ -25,11 +25,12 @@ from engine.stages.separation import (
     has_first_year,
 )
 from engine.stages.smoothing import adult_groups
+from engine.tables import Columns
 
 Flags = NDArray[np.bool_]
 Places = NDArray[np.intp]
 
-COLUMNS = ("mx", "ax", "qx", "lx", "dx", "Lx", "Tx", "ex")
+COLUMNS = Columns._fields
 CELLS = 24_576  # of a column in a block
 BELOW_ONE = 1 - 1e-12  # a qx under this is not bound
 LEAST = 1e-200  # a share of births by which what is summed above it is divided without loss
@@ -91,20 +92,6 @@ class Rows:
         )
 
 
-@dataclass(frozen=True, slots=True)
-class Block:
-    """Columns of a block, each [row, age]."""
-
-    mx: Array
-    ax: Array
-    qx: Array
-    lx: Array
-    dx: Array
-    Lx: Array
-    Tx: Array
-    ex: Array
-
-
 def fill(
     panel: Panel, settings: Settings, columns: dict[str, Array], numbers: dict[str, Array]
 ) -> Flags:
@@ -117,7 +104,7 @@ def fill(
         separation = _separation(panel, early_rules(panel.grid, settings))
         for first in range(0, rows, size):
             where = slice(first, min(first + size, rows))
-            block = Block(*(columns[name][where] for name in COLUMNS))
+            block = Columns(*(columns[name][where] for name in COLUMNS))
             some = room.some(len(block.mx))
             np.divide(panel.deaths[where], panel.exposure[where], out=block.mx)
             _die(some, {group: ax[where] for group, ax in separation.items()}, block)
@@ -144,7 +131,7 @@ def _rate(panel: Panel, group: int) -> Array:
     return np.asarray(panel.deaths[:, group] / panel.exposure[:, group])
 
 
-def _die(rows: Rows, separation: dict[int, Array], block: Block) -> None:
+def _die(rows: Rows, separation: dict[int, Array], block: Columns) -> None:
     """ax and qx = n m / (1 + (n - a) m)."""
     mx, ax, qx, after, widths = block.mx, block.ax, block.qx, rows.first, rows.widths
     ax[:] = rows.n / 2
@@ -165,7 +152,7 @@ def _die(rows: Rows, separation: dict[int, Array], block: Block) -> None:
     qx[:, -1] = 1.0
 
 
-def _live(rows: Rows, block: Block) -> None:
+def _live(rows: Rows, block: Columns) -> None:
     """From lx to ex. A step that reads the group beside reads on into the next row; what it makes
     of that is written over, or nothing."""
     lx, dx, Lx, px = block.lx, block.dx, block.Lx, rows.first
@@ -182,7 +169,7 @@ def _live(rows: Rows, block: Block) -> None:
     np.divide(block.Tx, np.maximum(lx, LEAST, out=rows.first), out=block.ex)
 
 
-def _sums(rows: Rows, block: Block, numbers: dict[str, Array]) -> None:
+def _sums(rows: Rows, block: Columns, numbers: dict[str, Array]) -> None:
     """With v the years that those who die in a group live in it: of e-dagger, d e less (v / n)
     (e(x) - e(x+n)); of gini the years that two of one table are both alive, l v + l(x+n) L, and
     half of l v in the open group; of sd0 the variance, d (x + a - e0)^2, and v a more where lives
@@ -204,7 +191,7 @@ def _sums(rows: Rows, block: Block, numbers: dict[str, Array]) -> None:
     squares += inside[:, -1] * ax[:, -1]
 
 
-def _places(rows: Rows, block: Block, places: Places) -> None:
+def _places(rows: Rows, block: Columns, places: Places) -> None:
     """The first group that no more than half reach, 0 where more reach each; and which adult group
     has most deaths a year."""
     np.argmax(np.less_equal(block.lx, 0.5, out=rows.flags), axis=1, out=places[0])

@@ -5,6 +5,7 @@ mx and ax, so that an indicator states only how it reads the table.
 """
 
 from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 
@@ -24,6 +25,20 @@ class LifeTable:
     mx: Array
     ax: Array  # in the open group, the expectation of life at its start
     qx: Array  # 1 in the open group
+    lx: Array
+    dx: Array
+    Lx: Array
+    Tx: Array
+    ex: Array
+
+
+class Columns(NamedTuple):
+    """The columns of many tables, written in place: of the whole batch or of one part of it, by row
+    or as one row of cells."""
+
+    mx: Array
+    ax: Array
+    qx: Array
     lx: Array
     dx: Array
     Lx: Array

@@ -5,33 +5,19 @@ cells; those that carry something from age to age run over four rows at once, si
 row waits for the one before it.
 """
 
-from typing import NamedTuple
-
 import numpy as np
 from numpy.typing import NDArray
 
 from engine.ages import Array
 from engine.compiled.jit import compiled, summing
 from engine.compiled.rules import Rules, by_infant_rate
+from engine.tables import Columns
 
 Places = NDArray[np.intp]
 
 NUMBERS = ("e0", "e65", "median", "mode_raw", "edagger", "H", "gini", "sd0")
 TILE = 7168  # cells of a column: those of a tile fill half of a cache of one megabyte
 FOUR = 4  # rows that are carried from age to age at once, as the steps below are written out
-
-
-class Columns(NamedTuple):
-    """The columns of tables: of the whole batch or of one tile, by row or as one row of cells."""
-
-    mx: Array
-    ax: Array
-    qx: Array
-    lx: Array
-    dx: Array
-    Lx: Array
-    Tx: Array
-    ex: Array
 
 
 def tables(
