@@ -67,6 +67,24 @@ class Break:
     ratio_error: float | None = None  # standard error of the ratio
 
 
+CAUSE_KINDS = ("natural", "external", "undetermined", "ill_defined", "pending", "not_underlying")
+CARE = ("suicide", "overdose", "violence")  # pages on such deaths follow reporting cautions
+
+
+@dataclass(frozen=True, slots=True)
+class Cause:
+    """One entry of a cause list, a tree. Codes, parents, ranges and kinds are content of the
+    edition, labels are presentation. Deaths are stored for causes that have none under them."""
+
+    code: str
+    label: str
+    parent: str = ""  # code of the cause it is part of; empty at the top
+    ranges: tuple[str, ...] = ()  # of codes of the classification: "A00-B99", "U07"
+    kind: str = "natural"  # one of CAUSE_KINDS
+    care: str = ""  # one of CARE; empty: none
+    sex: str = ""  # f or m: such deaths befall this sex alone; empty: both
+
+
 @dataclass(frozen=True, slots=True)
 class Area:
     """One area of a collection. Parents are content of the edition, names are presentation."""

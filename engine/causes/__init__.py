@@ -1,0 +1,1 @@
+"""Life tables and rates by cause of death."""
