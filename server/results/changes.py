@@ -237,7 +237,7 @@ def _differing(
     protected = masks.find(session, code, (then, now)) if question.figures != FULL else {}
     for key, pair in pairs:
         old, new = (
-            vector if vector is None else masked({key: vector}, protected.get(number))[key]
+            vector if vector is None else masked({key: vector}, protected.get(number)).get(key)
             for number, vector in zip((then, now), pair, strict=True)
         )
         if not protected or _unlike(old, new):

@@ -30,13 +30,14 @@ def released(
 
 
 def masked(cells: Mapping[Key, Vector], protected: Protected | None) -> Cells:
-    """Schedules as they are shown under a mask."""
+    """Schedules as they are shown under a mask. Deaths by cause are not shown under any."""
     if protected is None:
         return dict(cells)
     hidden = protected.kept.mask
     return {
         key: shown(vector, hidden[key]) if key in hidden else vector
         for key, vector in cells.items()
+        if not key.cause
     }
 
 
