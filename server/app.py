@@ -8,12 +8,14 @@ from http import HTTPStatus
 
 from fastapi import FastAPI, Request, Response
 from fastapi.exceptions import RequestValidationError
+from markupsafe import Markup
 from starlette.exceptions import HTTPException
 from starlette.types import ASGIApp, Receive, Scope, Send
 
 from seed_scenarios import quillmere
 from server.accounts.viewer import NotAllowed
 from server.actions.works import works
+from server.charts.chart import Chart
 from server.charts.figure import figure
 from server.config import Config
 from server.exports import csv, json, xlsx
@@ -27,7 +29,7 @@ from server.results.questions import BadAddress
 from server.results.series import TooLarge
 from server.routes import ROUTERS
 from server.routes.asking import Elsewhere, NoSuchPage
-from server.sentences.text import _, language, n_, speaking
+from server.sentences.text import _, language, n_, signs, speaking
 from server.store import errors
 from server.store.connect import Session, make_engine, sessions
 from server.store.jobs import JobBook
@@ -105,7 +107,7 @@ def _web() -> Web:
     environment = templating.environment(
         filters={
             "printed": printed,
-            "figure": lambda chart: templating.json_block(figure(chart, _)),
+            "figure": _drawn,
             "lang": lambda code: code if code != "pseudo" else "en",
         },
         names={"_": _, "n_": n_},
@@ -118,6 +120,12 @@ def _web() -> Web:
         language=language,
         error_page=error_page.build,
     )
+
+
+def _drawn(chart: Chart) -> Markup:
+    """A picture for the page's script, its numbers in the signs of the language."""
+    own = signs()
+    return templating.json_block(figure(chart, _, separators=own.decimal + own.thousands))
 
 
 def _csv(page: Page, key: str, name: str) -> Body:

@@ -16,12 +16,17 @@ from server.charts.traces import traces
 STEP = {"age": (10, 20), "year": (5, 10)}  # of labelled ticks, wide and narrow
 
 
-def figure(chart: Chart, say: Callable[[str], str]) -> dict[str, Any]:
+def figure(chart: Chart, say: Callable[[str], str], *, separators: str = ".,") -> dict[str, Any]:
     """{"data", "layout", "narrow", "print", "print_height"}.
 
-    `narrow` and `print` replace whole keys of the layout. `say` is the text catalogue.
+    `narrow` and `print` replace whole keys of the layout. `say` is the text catalogue; `separators`
+    are the decimal sign and the one between thousands.
     """
-    layout = LAYOUT | {"xaxis": _x_axis(chart, narrow=False), "yaxis": _y_axis(chart, WIDE)}
+    layout = LAYOUT | {
+        "separators": separators,
+        "xaxis": _x_axis(chart, narrow=False),
+        "yaxis": _y_axis(chart, WIDE),
+    }
     font = LAYOUT["font"]
     wide, phone, paper = (
         {"margin": margins(chart, measure)} | placed(chart, measure, say)

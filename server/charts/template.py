@@ -23,7 +23,6 @@ LAYOUT: dict[str, Any] = {
         "align": "left",
         "font": {"family": "Ysabeau Ebb, Gill Sans, sans-serif", "size": 14.5, "color": "@ink"},
     },
-    "separators": ".,",
     "bargap": 0,
     "xaxis": {
         "ticklabelstandoff": 0,

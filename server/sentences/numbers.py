@@ -1,13 +1,14 @@
 """Numbers as people read them: the one rounding policy of every page.
 
 A number is rounded once, from its shortest decimal form, halves to the even digit, and printed with
-a true minus sign, commas between thousands, and a space before its unit that no line break takes.
+a true minus sign, the language's own signs (in English commas between thousands), and a space
+before its unit that no line break takes.
 """
 
 import math
 from decimal import ROUND_HALF_EVEN, Context, Decimal
 
-from server.sentences.text import _
+from server.sentences.text import _, signs
 
 MINUS = "\N{MINUS SIGN}"
 NO_BREAK = "\N{NO-BREAK SPACE}"
@@ -26,7 +27,9 @@ def number(value: float, decimals: int, *, signed: bool = False) -> str:
     exact = Decimal(str(value))
     rounded = exact.quantize(Decimal(1).scaleb(-decimals), context=_EXACT)
     sign = MINUS if rounded < 0 else "+" if signed and rounded > 0 else ""
-    return f"{sign}{abs(rounded):,f}"
+    own = signs()
+    digits = f"{abs(rounded):,f}".replace(",", "\0").replace(".", own.decimal)
+    return f"{sign}{digits}".replace("\0", own.thousands)
 
 
 def as_printed(value: float, decimals: int) -> float:
@@ -54,8 +57,7 @@ def as_needed(value: float) -> str:
     >>> as_needed(94011.0), as_needed(0.8), as_needed(1.25)
     ('94,011', '0.8', '1.25')
     """
-    text = number(value, 2)
-    return text.rstrip("0").rstrip(".")
+    return number(value, 2).rstrip("0").rstrip(signs().decimal)
 
 
 def interval(low: float, high: float, decimals: int, *, signed: bool = False) -> str:

@@ -8,13 +8,22 @@ from collections.abc import Iterator
 from contextlib import contextmanager
 from contextvars import ContextVar
 
+from server.sentences.languages import OTHERS, Signs, translated
+
 _LANGUAGE: ContextVar[str] = ContextVar("language", default="en")
-LANGUAGES = ("en", "pseudo")
+LANGUAGES = ("en", *OTHERS, "pseudo")
+_ENGLISH = Signs(".", ",")
 
 
 def language() -> str:
     """The language in force, for the html element."""
     return _LANGUAGE.get()
+
+
+def signs() -> Signs:
+    """How numbers are printed in the language in force."""
+    other = OTHERS.get(_LANGUAGE.get())
+    return other.signs if other else _ENGLISH
 
 
 @contextmanager
@@ -34,8 +43,11 @@ def speaking(code: str) -> Iterator[None]:
 
 def _(text: str, /, **values: object) -> str:
     """The text in the language in force, with its {names} filled in."""
-    if _LANGUAGE.get() == "pseudo":
+    code = _LANGUAGE.get()
+    if code == "pseudo":
         text = f"⟦{text}⟧"
+    elif code in OTHERS:
+        text = translated(code, text)
     return text.format(**values) if values else text
 
 
