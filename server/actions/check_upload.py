@@ -2,17 +2,16 @@
 
 from dataclasses import replace
 
+from server.actions.drafts import handed
 from server.actions.standing import standing
 from server.intake.checks import basis
-from server.intake.mapping import Mapping
-from server.intake.parsing import READER, Handed, Parsed, parse
+from server.intake.parsing import READER, Parsed, parse
 from server.intake.report import Report
 from server.intake.standing import Standing
 from server.jobs.executor import Tell, untold
 from server.store import editions, uploads
 from server.store.connect import Session, transaction
-from server.store.errors import Refused
-from server.store.records import Basis, Upload
+from server.store.records import Basis
 
 # what it is at, texts of the catalogue
 OPENING, WRITING = "opening the files", "writing the report"
@@ -54,43 +53,3 @@ def with_basis(parsed: Parsed, own: Basis, known: Standing) -> Parsed:
     bases = basis.Bases(own, frozenset(parsed.cells), parsed.breaks, known)
     problems = (*parsed.problems, *basis.problems_of(bases))
     return replace(parsed, problems=problems, rebased=basis.rebased(bases))
-
-
-def handed(session: Session, upload: Upload) -> list[Handed]:
-    """The files of an upload as they were handed in, with their mappings. Raises: Refused."""
-    _require_mapped(upload)
-    return [
-        Handed(
-            file.role,
-            file.name,
-            uploads.file_bytes(session, upload.id, file.role),
-            Mapping.from_json(file.mapping),
-        )
-        for file in upload.files
-    ]
-
-
-def require_checkable(upload: Upload) -> None:
-    """Raises: Refused where it is an edition already, or a file has no mapping yet."""
-    require_draft(upload)
-    _require_mapped(upload)
-
-
-def require_draft(upload: Upload) -> None:
-    """Raises: Refused where it is an edition already."""
-    if upload.edition is not None:
-        raise Refused(
-            "Upload {upload} is edition {edition} already.",
-            upload=upload.id,
-            edition=upload.edition,
-        )
-
-
-def _require_mapped(upload: Upload) -> None:
-    for file in upload.files:
-        if not file.mapping:
-            raise Refused(
-                "The columns of {file} are not mapped yet. Say which column is which, then check "
-                "the upload.",
-                file=file.name,
-            )

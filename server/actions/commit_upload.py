@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from server.accounts.viewer import Right, Viewer
 from server.actions import masking
-from server.actions.check_upload import handed, require_draft
+from server.actions.drafts import handed, require_draft
 from server.actions.laid_over import Base, made_of
 from server.intake.parsing import READER, Parsed, parse
 from server.intake.problems import Problem

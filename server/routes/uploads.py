@@ -8,10 +8,10 @@ from typing import Any
 from fastapi import APIRouter, Request, Response
 
 from server.accounts.viewer import Right
-from server.actions.check_upload import require_checkable
 from server.actions.commit_upload import commit_upload, require_ready
 from server.actions.correct_upload import correct_upload
 from server.actions.discard_upload import discard_upload
+from server.actions.drafts import require_checkable
 from server.actions.erase_bytes import erase_bytes
 from server.actions.preview_upload import preview_upload
 from server.actions.works import to_commit
