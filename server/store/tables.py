@@ -71,6 +71,20 @@ class UploadFile(Base):
     erased_why: Mapped[str] = mapped_column(Text, server_default="")
 
 
+class Foreseen(Base):
+    """What an edition made of a draft would change, by what is taken of it."""
+
+    __tablename__ = "foreseen"
+    __table_args__ = {"sqlite_strict": True}
+
+    upload_id: Mapped[int] = mapped_column(
+        ForeignKey("upload.id", ondelete="CASCADE"), primary_key=True
+    )
+    taking: Mapped[str] = mapped_column(Text, primary_key=True)  # as in an address; empty: all
+    base: Mapped[int]
+    content: Mapped[str] = mapped_column(Text)  # JSON
+
+
 class Edition(Base):
     """One immutable state. The row is never updated; what befalls it later is an EditionEvent."""
 

@@ -10,7 +10,7 @@ from sqlalchemy import delete, insert, select, true, update
 from sqlalchemy.orm import Session
 from sqlalchemy.sql import ColumnElement
 
-from server.store import collections
+from server.store import collections, foreseen
 from server.store.base import LARGEST
 from server.store.errors import Missing, Refused
 from server.store.records import Basis, Upload, UploadFile
@@ -138,6 +138,7 @@ def set_mapping(
             .values(mapping=mapping)
         )
     said = json.dumps(asdict(basis), ensure_ascii=False)
+    foreseen.forget(session, upload_id)
     _set(session, upload_id, basis=said, report="", reader="", base=None)
     return find(session, upload_id)
 
@@ -159,6 +160,7 @@ def set_roles(session: Session, upload_id: int, *, roles: Mapping[str, str]) -> 
             .where(FileRow.upload_id == upload_id, FileRow.role == before)
             .values(role=after, mapping="")
         )
+    foreseen.forget(session, upload_id)
     _set(session, upload_id, report="", reader="", base=None)
     return find(session, upload_id)
 
@@ -167,6 +169,7 @@ def set_report(session: Session, upload_id: int, *, report: str, reader: str, ba
     """What the checks found (JSON), the version of the reader, and the number of the edition that
     stood then (0: none). Raises: Missing; Refused for an upload that has become an edition."""
     _draft(session, upload_id)
+    foreseen.forget(session, upload_id)
     _set(session, upload_id, report=report, reader=reader, base=base)
     return find(session, upload_id)
 
@@ -175,6 +178,7 @@ def erase(session: Session, upload_id: int) -> None:
     """Throw a draft away, files and all. Raises: Missing; Refused for one that has become an
     edition."""
     _draft(session, upload_id)
+    foreseen.forget(session, upload_id)
     session.execute(delete(FileRow).where(FileRow.upload_id == upload_id))
     session.execute(delete(UploadRow).where(UploadRow.id == upload_id))
 
