@@ -75,12 +75,11 @@ def _revision(session: Session) -> int:
     return collections.find(session, "saltmarsh").revision
 
 
+@pytest.mark.parametrize("db_url", ["sqlite"], indirect=True)  # PostgreSQL waits for its readers
 def test_a_reader_at_work_is_told_of(
     session: Session, engine: Engine, new_session: sessionmaker[Session]
 ) -> None:
     """What somebody still reads stays in the log of writes; done again afterwards, it is gone."""
-    if engine.dialect.name != "sqlite":
-        pytest.skip("PostgreSQL waits for its readers")
     with engine.connect() as at_work:
         at_work.execute(text("SELECT count(*) FROM upload_file")).scalar()
         with new_session() as other:

@@ -1,6 +1,8 @@
 """The mask of an edition: complete, kept from edition to edition, blind to what it withholds."""
 
+from collections.abc import Iterator
 from dataclasses import replace
+from itertools import permutations
 
 import numpy as np
 import pytest
@@ -142,36 +144,28 @@ def _rows(matrix: csr_array) -> list[tuple[int, int]]:
     return list(zip(matrix.indptr[:-1].tolist(), matrix.indptr[1:].tolist(), strict=True))
 
 
-@pytest.mark.parametrize("seed", range(6))
-def test_what_is_released_does_not_depend_on_what_is_withheld(seed: int) -> None:
-    """Other deaths that would be withheld alike and leave all that is shown as it is: the same
-    mask, the same stand-ins, to the last digit."""
+@pytest.mark.parametrize("seed", [0, 1, 2, 3, 7, 9])  # each has such a truth
+def test_stand_ins_do_not_depend_on_what_is_withheld(seed: int) -> None:
+    """Another truth of which the same is withheld, and which leaves all that is shown as it is: the
+    same stand-ins, to the last digit."""
     cells = drawn(FLAT, seed=seed, people=2.5e4)
     made = mask(FLAT, cells, TERMS).mask
-    other = _another_truth(cells, made)
-    if other is None:
-        pytest.skip("no other truth has the same small counts")
-    assert any(not np.array_equal(cells[key].values, other[key].values) for key in cells)
-    again = mask(FLAT, other, TERMS).mask
-    if again.keys() == made.keys() and all(again[key].ages == made[key].ages for key in made):
-        assert again == made
+    others = (mask(FLAT, other, TERMS).mask for other in _other_truths(cells, made))
+    assert made == next(one for one in others if _places(one) == _places(made))
 
 
-def _another_truth(cells: Cells, made: Mask) -> Cells | None:
+def _places(made: Mask) -> dict[Key, tuple[int, ...]]:
+    return {key: gone.ages for key, gone in made.items()}
+
+
+def _other_truths(cells: Cells, made: Mask) -> Iterator[Cells]:
     """One death more and one fewer round a square of withheld counts that stay small or large."""
     leaves = [area.code for area in FLAT[1:]]
-    for one in leaves:
-        for two in leaves:
-            for x in GRID.starts:
-                for y in GRID.starts:
-                    if one == two or x == y:
-                        continue
-                    moved = _moved(
-                        cells, made, ((one, x, 1), (one, y, -1), (two, x, -1), (two, y, 1))
-                    )
-                    if moved is not None:
-                        return moved
-    return None
+    for one, two in permutations(leaves, 2):
+        for x, y in permutations(GRID.starts, 2):
+            steps = ((one, x, 1), (one, y, -1), (two, x, -1), (two, y, 1))
+            if (moved := _moved(cells, made, steps)) is not None:
+                yield moved
 
 
 def _moved(cells: Cells, made: Mask, steps: tuple[tuple[str, int, int], ...]) -> Cells | None:
