@@ -12,7 +12,7 @@ from typing import NamedTuple
 import numpy as np
 
 from engine.ages import AgeGrid, Array
-from server.store.records import Area, Basis, Break, Key, Vector
+from server.store.records import Area, Basis, Break, Cause, Key, Vector
 
 DECIMALS = 6  # of a count: nobody delivers a millionth of a person-year
 _ROUNDED_BELOW = 2.0**31  # above, a double has few decimals left and rounding twice might move it
@@ -119,6 +119,12 @@ def of_break(one: Break) -> bytes:
     """Its note counts: a page that is pinned says why its line stops."""
     numbers = ("" if number is None else repr(number) for number in (one.ratio, one.ratio_error))
     return _digest("break", one.area, one.period, one.kind, one.cause, one.note, *numbers)
+
+
+def of_cause(cause: Cause) -> bytes:
+    return _digest(
+        "cause", cause.code, cause.parent, cause.kind, cause.care, cause.sex, *cause.ranges
+    )
 
 
 def of_edition(parts: Iterable[bytes]) -> str:

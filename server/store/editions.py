@@ -25,7 +25,14 @@ from server.store.records import (
     Key,
     Taking,
 )
-from server.store.tables import AreaRange, BasisRange, BreakRange, EditionEvent, Schedule
+from server.store.tables import (
+    AreaRange,
+    BasisRange,
+    BreakRange,
+    CauseRange,
+    EditionEvent,
+    Schedule,
+)
 from server.store.tables import Edition as EditionRow
 
 
@@ -41,10 +48,11 @@ class Prepared:
     areas: ranges.Difference
     basis: ranges.Difference
     breaks: ranges.Difference
+    causes: ranges.Difference
 
     @property
     def digest(self) -> str:
-        parts = (self.schedules, self.areas, self.basis, self.breaks)
+        parts = (self.schedules, self.areas, self.basis, self.breaks, self.causes)
         return digests.of_edition(one for part in parts for one in part.digests)
 
     @property
@@ -131,6 +139,11 @@ def prepare(session: Session, change: Change) -> Prepared:
             {rows.of_break(one): digests.of_break(one) for one in change.breaks},
             frozenset(map(rows.of_break, change.ended_breaks)),
         ),
+        causes=compared(
+            CauseRange,
+            {(cause.code,): digests.of_cause(cause) for cause in change.causes},
+            frozenset((code,) for code in change.ended_causes),
+        ),
     )
 
 
@@ -165,9 +178,11 @@ def write(session: Session, prepared: Prepared, *, by: str, note: str, at: dt.da
         (AreaRange, prepared.areas, rows.areas(prepared.areas.add, change)),
         (BasisRange, prepared.basis, rows.basis(prepared.basis.add, change)),
         (BreakRange, prepared.breaks, rows.breaks(prepared.breaks.add, change)),
+        (CauseRange, prepared.causes, rows.causes(prepared.causes.add, change)),
     ):
         ranges.apply(session, table, collection.id, part, number, added)
     rows.name_areas(session, collection.id, change.areas)
+    rows.label_causes(session, collection.id, change.causes)
     collections.touch(session, collection.id)
     return _certain(session, collection.code, number)
 

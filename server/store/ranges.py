@@ -14,11 +14,18 @@ from typing import Any, cast
 from sqlalchemy import Table, func, insert, literal, select, update
 from sqlalchemy.orm import Session
 
-from server.store.tables import AreaRange, BasisRange, BreakRange, Edition, Schedule
+from server.store.tables import (
+    AreaRange,
+    BasisRange,
+    BreakRange,
+    CauseRange,
+    Edition,
+    Schedule,
+)
 
 STEP = 5000  # rows a statement: databases limit the values one statement may carry
 RowKey = tuple[str, ...]
-Content = type[Schedule] | type[AreaRange] | type[BasisRange] | type[BreakRange]
+Content = type[Schedule] | type[AreaRange] | type[BasisRange] | type[BreakRange] | type[CauseRange]
 
 
 @dataclass(frozen=True, slots=True)

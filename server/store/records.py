@@ -227,6 +227,8 @@ class Change:
     ended_areas: frozenset[str] = frozenset()  # codes of the base that became others
     breaks: tuple[Break, ...] = ()  # handed in
     ended_breaks: tuple[Break, ...] = ()  # of the base
+    causes: tuple[Cause, ...] = ()  # handed in, in the order of their list
+    ended_causes: frozenset[str] = frozenset()  # codes of the base that the list no longer has
 
 
 @dataclass(frozen=True, slots=True)

@@ -13,8 +13,8 @@ from sqlalchemy.orm import Session
 
 from server.store import digests
 from server.store.ranges import RowKey
-from server.store.records import Area, Break, Change, Key
-from server.store.tables import AreaName, BreakRange, Grid
+from server.store.records import Area, Break, Cause, Change, Key
+from server.store.tables import AreaName, BreakRange, CauseLabel, Grid
 
 Rows = Iterator[Mapping[str, Any]]
 
@@ -69,6 +69,20 @@ def breaks(added: Mapping[RowKey, bytes], change: Change) -> Rows:
             yield {**asdict(one), "digest": digest}
 
 
+def causes(added: Mapping[RowKey, bytes], change: Change) -> Rows:
+    for cause in change.causes:
+        if digest := added.get((cause.code,)):
+            yield {
+                "code": cause.code,
+                "parent": cause.parent,
+                "ranges": " ".join(cause.ranges),
+                "kind": cause.kind,
+                "care": cause.care,
+                "sex": cause.sex,
+                "digest": digest,
+            }
+
+
 def of_break(one: Break) -> RowKey:
     """The key in the order of the table's own."""
     return tuple(getattr(one, name) for name in BreakRange.KEY)
@@ -90,6 +104,27 @@ def name_areas(session: Session, collection_id: int, named: Sequence[Area]) -> N
         else:
             row = {"collection_id": collection_id, "code": area.code, "name": area.name}
             session.execute(insert(AreaName).values(row))
+
+
+def label_causes(session: Session, collection_id: int, listed: Sequence[Cause]) -> None:
+    """Keep the labels given and the order of the list; a cause without a label keeps the one it
+    has."""
+    of_collection = CauseLabel.collection_id == collection_id
+    known = {
+        row.code: (row.label, row.place)
+        for row in session.execute(
+            select(CauseLabel.code, CauseLabel.label, CauseLabel.place).where(of_collection)
+        )
+    }
+    for place, cause in enumerate(listed):
+        label, _before = known.get(cause.code, (cause.code, place))
+        own = {"label": cause.label or label, "place": place}
+        if cause.code not in known:
+            row = {"collection_id": collection_id, "code": cause.code, **own}
+            session.execute(insert(CauseLabel).values(row))
+        elif known[cause.code] != (own["label"], place):
+            changed = update(CauseLabel).where(of_collection, CauseLabel.code == cause.code)
+            session.execute(changed.values(own))
 
 
 @lru_cache(maxsize=1024)

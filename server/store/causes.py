@@ -1,0 +1,103 @@
+"""Cause lists: the tree is content of an edition, labels and the order of the list presentation."""
+
+from collections.abc import Iterable
+
+from sqlalchemy import Select, and_, func, select
+from sqlalchemy.orm import Session
+
+from server.store import collections
+from server.store.errors import Refused
+from server.store.records import Cause
+from server.store.tables import CauseLabel, CauseRange
+
+
+def listing(session: Session, collection: str, number: int) -> tuple[Cause, ...]:
+    """The cause list of an edition, each cause before its parts, siblings in the order in which
+    they were last handed in; empty where the edition has none. One statement."""
+    rows = session.execute(_statement(collection, number)).all()
+    ordered = sorted(rows, key=lambda row: (row.place, row.code))
+    return in_tree_order(
+        Cause(
+            row.code, row.label, row.parent, tuple(row.ranges.split()), row.kind, row.care, row.sex
+        )
+        for row in ordered
+    )
+
+
+def _statement(collection: str, number: int) -> "Select[str, str, str, str, str, str, str, int]":
+    return (
+        select(
+            CauseRange.code,
+            func.coalesce(CauseLabel.label, CauseRange.code).label("label"),
+            CauseRange.parent,
+            CauseRange.ranges,
+            CauseRange.kind,
+            CauseRange.care,
+            CauseRange.sex,
+            func.coalesce(CauseLabel.place, 0).label("place"),
+        )
+        .outerjoin(
+            CauseLabel,
+            and_(
+                CauseLabel.collection_id == CauseRange.collection_id,
+                CauseLabel.code == CauseRange.code,
+            ),
+        )
+        .where(
+            CauseRange.collection_id == collections.id_of(collection), CauseRange.holds_in(number)
+        )
+    )
+
+
+def in_tree_order(causes: Iterable[Cause]) -> tuple[Cause, ...]:
+    """Each cause before its parts, siblings in the order given.
+
+    Raises: Refused where a cause is part of one that is not listed, or of itself.
+    """
+    listed = tuple(causes)
+    codes = {cause.code for cause in listed}
+    parts: dict[str, list[Cause]] = {}
+    for cause in listed:
+        if cause.parent and cause.parent not in codes:
+            raise Refused(
+                "Cause {cause} is said to be part of {parent}, which is not in the list. Add "
+                "{parent}, or leave the whole of {cause} empty.",
+                cause=cause.code,
+                parent=cause.parent,
+            )
+        parts.setdefault(cause.parent, []).append(cause)
+    ordered: list[Cause] = []
+    waiting = parts.pop("", [])[::-1]
+    while waiting:
+        cause = waiting.pop()
+        ordered.append(cause)
+        waiting.extend(parts.pop(cause.code, [])[::-1])
+    if parts:
+        inside = sorted(part.code for several in parts.values() for part in several)
+        raise Refused(
+            "Causes {causes} are part of themselves. Correct what they are part of, so that the "
+            "list forms a tree.",
+            causes=", ".join(inside),
+        )
+    return tuple(ordered)
+
+
+def leaves(causes: Iterable[Cause]) -> tuple[Cause, ...]:
+    """Those without parts, under which deaths are counted, in the order of the list."""
+    listed = tuple(causes)
+    wholes = {cause.parent for cause in listed}
+    return tuple(cause for cause in listed if cause.code not in wholes)
+
+
+def top_of(causes: Iterable[Cause]) -> dict[str, str]:
+    """Code of every cause to that of the top of the tree that it lies under.
+
+    >>> top_of([Cause("heart", "", ""), Cause("coronary", "", "heart")])
+    {'heart': 'heart', 'coronary': 'heart'}
+    """
+    above = {cause.code: cause.parent for cause in causes}
+
+    def top(code: str) -> str:
+        return top(above[code]) if above.get(code) else code
+
+    return {code: top(code) for code in above}
