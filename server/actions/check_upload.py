@@ -1,20 +1,28 @@
-"""Read a mapped draft, run every check, and keep the report with the edition that stood then."""
+"""Read a mapped draft, run every check, and keep the report with the edition that stood then, and
+what an edition made of the draft would change."""
 
 from dataclasses import replace
 
+from server.actions.commit_upload import Sound
 from server.actions.drafts import handed
+from server.actions.preview_upload import keep, worked_out
 from server.actions.standing import standing
 from server.intake.checks import basis
 from server.intake.parsing import READER, Parsed, parse
 from server.intake.report import Report
 from server.intake.standing import Standing
 from server.jobs.executor import Tell, untold
+from server.results.preview import Preview
 from server.store import editions, uploads
 from server.store.connect import Session, transaction
-from server.store.records import Basis
+from server.store.records import ALL_OF_IT, Basis, Upload
 
 # what it is at, texts of the catalogue
-OPENING, WRITING = "opening the files", "writing the report"
+OPENING, COMPARING, WRITING = (
+    "opening the files",
+    "comparing with what stands",
+    "writing the report",
+)
 
 
 def check_upload(session: Session, *, upload_id: int, tell: Tell = untold) -> Report:
@@ -28,13 +36,15 @@ def check_upload(session: Session, *, upload_id: int, tell: Tell = untold) -> Re
     newest = editions.newest_standing(session, upload.collection)
     base = newest.number if newest else 0
     known = standing(session, upload.collection, base)
-    steps = len(upload.files) + 3
+    steps = len(upload.files) + 4
     tell(0, steps, OPENING)
     files = handed(session, upload)
     parsed = parse(files, known, reached=lambda step, stage: tell(1 + step, steps, stage))
     if upload.basis is not None:
         parsed = with_basis(parsed, upload.basis, known)
     report = Report.of(parsed)
+    tell(steps - 2, steps, COMPARING)
+    foreseen = _foreseen(session, upload, base, parsed, report)
     tell(steps - 1, steps, WRITING)
     with transaction(session):
         uploads.require_read_so(session, upload)
@@ -45,7 +55,19 @@ def check_upload(session: Session, *, upload_id: int, tell: Tell = untold) -> Re
             reader=READER,
             base=base,
         )
+        if foreseen is not None:
+            keep(session, upload_id, foreseen)
     return report
+
+
+def _foreseen(
+    session: Session, upload: Upload, base: int, parsed: Parsed, report: Report
+) -> Preview | None:
+    """What all of it would change; None where it cannot become an edition as it stands."""
+    if upload.basis is None or report.errors:
+        return None
+    sound = Sound(upload, upload.basis, base, warnings=len(report.warnings), rows=report.rows)
+    return worked_out(session, sound, parsed, ALL_OF_IT)
 
 
 def with_basis(parsed: Parsed, own: Basis, known: Standing) -> Parsed:

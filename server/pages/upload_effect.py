@@ -11,6 +11,7 @@ from server.results.preview import Preview, asked
 from server.sentences import taking as say
 from server.sentences.pieces import Sentence, phrase
 from server.sentences.text import _
+from server.store.records import Taking
 
 Options = tuple[tuple[str, str], ...]
 
@@ -30,28 +31,38 @@ class Effect:
     asked: str  # the choices as they stand in the address: what was shown before the button
 
 
-def effect(shown: Preview, report: Report, number: int) -> Effect:
-    """`number` is that of the edition to be made."""
-    if shown.refusal is not None:
-        said: tuple[Sentence, ...] = (phrase(_(shown.refusal.text, **shown.refusal.values)),)
-    else:
-        said = (
-            say.would_change(number, shown.base, asdict(shown.cells)),
-            say.settled(shown.settled, "final"),
-            say.settled(shown.unsettled, "provisional"),
-        )
-    drops = shown.gives_way
-    taking = shown.taking
+UNSHOWN = "nothing"  # where nothing was shown: no choices are spelled so
+
+
+def effect(
+    taking: Taking, shown: Preview | None, report: Report, *, base: int, number: int
+) -> Effect:
+    """`number` is that of the edition to be made on `base` (0: none); `shown` None: what these
+    choices would change is not worked out yet."""
+    years = shown.years if shown else ()
     return Effect(
-        said=tuple(sentence for sentence in said if sentence),
-        years=Listing((_years(shown.years, "effect"),) if shown.years else ()),
+        said=_said(shown, number),
+        years=Listing((_years(years, "effect"),) if years else ()),
         area_options=tuple((code, code) for code in report.areas) if len(report.areas) > 1 else (),
         areas=taking.areas,
         periods=", ".join(taking.periods),
-        options=say.choices(drops) if shown.base and drops else (),
+        options=say.choices(shown.gives_way if shown else None) if base else (),
         gives_way=taking.gives_way,
-        asked=asked(taking),
+        asked=asked(taking) if shown else UNSHOWN,
     )
+
+
+def _said(shown: Preview | None, number: int) -> tuple[Sentence, ...]:
+    if shown is None:
+        return (say.not_worked_out(),)
+    if shown.refusal is not None:
+        return (phrase(_(shown.refusal.text, **shown.refusal.values)),)
+    said = (
+        say.would_change(number, shown.base, asdict(shown.cells)),
+        say.settled(shown.settled, "final"),
+        say.settled(shown.unsettled, "provisional"),
+    )
+    return tuple(sentence for sentence in said if sentence)
 
 
 def _years(years: tuple[Yearly, ...], key: str) -> Table:

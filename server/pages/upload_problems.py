@@ -19,7 +19,7 @@ from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
 from server.store import collections, editions, uploads
 from server.store.connect import Session
-from server.store.records import Upload
+from server.store.records import ALL_OF_IT, Taking, Upload
 
 
 @dataclass(frozen=True, slots=True)
@@ -50,8 +50,11 @@ class UploadProblemsPage(Page):
     making: Making | None  # None: it is an edition already
 
 
-def build(session: Session, upload_id: int, shown: Preview | None = None) -> UploadProblemsPage:
-    """`upload_id` must have been checked; `shown` is what it would change."""
+def build(
+    session: Session, upload_id: int, taking: Taking = ALL_OF_IT, shown: Preview | None = None
+) -> UploadProblemsPage:
+    """`upload_id` must have been checked; `shown` is what taking this of it would change, where
+    that was worked out."""
     upload = uploads.find(session, upload_id)
     report = Report.from_json(upload.report)
     collection = collections.find(session, upload.collection)
@@ -78,7 +81,7 @@ def build(session: Session, upload_id: int, shown: Preview | None = None) -> Upl
         unstated=upload_unstated.listing(report),
         shared_out=upload_unstated.said(report),
         holds=_holds(report),
-        making=None if upload.edition else _making(session, upload, report, shown),
+        making=None if upload.edition else _making(session, upload, report, taking, shown),
     )
 
 
@@ -170,7 +173,9 @@ def _holds(report: Report) -> tuple[tuple[str, str], ...]:
     return (*counts, *told)
 
 
-def _making(session: Session, upload: Upload, report: Report, shown: Preview | None) -> Making:
+def _making(
+    session: Session, upload: Upload, report: Report, taking: Taking, shown: Preview | None
+) -> Making:
     all_ = editions.listing(session, upload.collection)
     number = all_[0].number + 1 if all_ else 1
     files = {file.name: file.role for file in upload.files}
@@ -182,5 +187,9 @@ def _making(session: Session, upload: Upload, report: Report, shown: Preview | N
         possible=not report.errors,
         why=say.why_not(len(report.errors), number),
         note_needed=bool(report.warnings),
-        effect=effect(shown, report, number) if shown else None,
+        effect=(
+            None
+            if report.errors
+            else effect(taking, shown, report, base=upload.base or 0, number=number)
+        ),
     )

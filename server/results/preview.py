@@ -1,8 +1,9 @@
 """What an edition would change, before it is made."""
 
+import json
 import re
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import asdict, dataclass
 from urllib.parse import urlencode
 
 from server.results.changes import Altered, Cells, Yearly, yearly
@@ -36,6 +37,35 @@ class Preview:
     settled: tuple[str, ...] = ()  # years that become final with no number moving
     unsettled: tuple[str, ...] = ()  # and provisional
     gives_way: Mapping[str, int] | None = None  # schedules of the base that each choice drops
+
+    def to_json(self) -> str:
+        """As it is kept, without what is taken."""
+        stored = {name: getattr(self, name) for name in ("base", "settled", "unsettled")}
+        stored |= {"schedules": asdict(self.schedules), "cells": asdict(self.cells)}
+        stored["years"] = [(one.period, *one.deaths, *one.person_years) for one in self.years]
+        stored["gives_way"] = None if self.gives_way is None else dict(self.gives_way)
+        if self.refusal is not None:
+            stored["refusal"] = (self.refusal.text, self.refusal.values)
+        return json.dumps(stored, ensure_ascii=False, default=str)
+
+    @classmethod
+    def from_json(cls, text: str, taking: Taking) -> "Preview":
+        stored = json.loads(text)
+        said = stored.get("refusal")
+        return cls(
+            base=stored["base"],
+            taking=taking,
+            refusal=Refused(said[0], **said[1]) if said else None,
+            schedules=Effect(**stored["schedules"]),
+            cells=Effect(**stored["cells"]),
+            years=tuple(
+                Yearly(period, (died, dies), (lived, lives))
+                for period, died, dies, lived, lives in stored["years"]
+            ),
+            settled=tuple(stored["settled"]),
+            unsettled=tuple(stored["unsettled"]),
+            gives_way=stored["gives_way"],
+        )
 
 
 def preview(

@@ -7,14 +7,15 @@ from typing import Any
 
 from fastapi import APIRouter, Request, Response
 
-from server.accounts.viewer import Right
-from server.actions.commit_upload import commit_upload, require_ready
+from server.accounts.viewer import Right, Viewer
+from server.actions.commit_upload import commit_upload, require_ready, require_sound
 from server.actions.correct_upload import correct_upload
 from server.actions.discard_upload import discard_upload
 from server.actions.drafts import require_checkable
 from server.actions.erase_bytes import erase_bytes
 from server.actions.preview_upload import preview_upload
-from server.actions.works import to_commit
+from server.actions.works import taking_of as taking_of_job
+from server.actions.works import to_commit, to_foresee
 from server.pages import upload as upload_page
 from server.pages import upload_checking, upload_problems
 from server.pages import uploads as uploads_page
@@ -23,8 +24,9 @@ from server.routes import plain
 from server.routes.asking import Elsewhere, SessionDep, ViewerDep, needs
 from server.routes.forms import FormDep, file, text
 from server.store import uploads
-from server.store.errors import Missing
-from server.store.records import Job
+from server.store.connect import Session
+from server.store.errors import Missing, Refused
+from server.store.records import Job, Taking
 from server.web.problem import Refusal
 from server.web.render import READ, asked_block, redirect, render
 
@@ -78,6 +80,8 @@ def show_checking(request: Request, session: SessionDep, upload: int) -> Respons
     if job.state != "done" and not made:
         return render(request, upload_checking.build(session, upload, job))
     found = f"/uploads/{upload}/problems"
+    if job.kind == "foresee":
+        found = _effect(upload, taking_of_job(json.loads(job.params)))
     if made:
         found = f"/c/{draft.collection}/{draft.edition}/contents"
     if asked_block(request):  # the page asks for itself while it waits: have it go on
@@ -112,7 +116,7 @@ def show_problems(
     if not twin:
         taking = taking_of(request.query_params.multi_items())
         shown = preview_upload(session, upload_id=upload, taking=taking, by=viewer)
-        return render(request, upload_problems.build(session, upload, shown))
+        return render(request, upload_problems.build(session, upload, taking, shown))
     page = upload_problems.build(session, upload)
     return plain.show(request, lambda: page, tag_parts=(page,), twin=twin)
 
@@ -149,8 +153,7 @@ def commit(
     sent = [(key, value) for key, value in form.multi_items() if isinstance(value, str)]
     taking = taking_of((key, value) for key, value in sent if key in CHOICES)
     if text(form, "do") == "look" or asked(taking) != text(form, "shown"):
-        place = f"/uploads/{upload}/problems?{asked(taking)}".rstrip("?")
-        return redirect(f"{place}#effect", status=303)
+        return _foresee(request, session, viewer, upload, taking)
     note, now = text(form, "note"), dt.datetime.now(dt.UTC)
     ready = require_ready(session, upload_id=upload, note=note, by=viewer)
     if ready.rows > AT_ONCE:
@@ -160,6 +163,29 @@ def commit(
         return redirect(f"/uploads/{upload}/checking?job={job}", status=303)
     edition = commit_upload(session, upload_id=upload, note=note, by=viewer, now=now, taking=taking)
     return redirect(f"/c/{ready.upload.collection}/{edition.number}/contents", status=303)
+
+
+def _foresee(
+    request: Request, session: Session, viewer: Viewer, upload: int, taking: Taking
+) -> Response:
+    """Have it worked out what these choices would change, unless that is known."""
+    place = _effect(upload, taking)
+    try:
+        require_sound(uploads.find(session, upload))
+    except Refused:  # the list of problems says why
+        return redirect(place, status=303)
+    if preview_upload(session, upload_id=upload, taking=taking, by=viewer) is None:
+        session.rollback()
+        params = to_foresee(upload, by=viewer, taking=taking)
+        job, state = _set_to_work(request, "foresee", params)
+        if state != "done":
+            place = f"/uploads/{upload}/checking?job={job}"
+    return redirect(place, status=303)
+
+
+def _effect(upload: int, taking: Taking) -> str:
+    """Where it stands what taking this of the upload would change."""
+    return f"/uploads/{upload}/problems?{asked(taking)}".rstrip("?") + "#effect"
 
 
 @router.post("/uploads/{upload:int}/discard", dependencies=MAY_UPLOAD)

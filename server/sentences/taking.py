@@ -33,6 +33,16 @@ def would_change(number: int, base: int, cells: Counts) -> Sentence:
     )
 
 
+def not_worked_out() -> Sentence:
+    """In place of the first line, where these choices were not looked at yet."""
+    return phrase(
+        _(
+            "What these choices would change has not been worked out yet. Have it shown below; a "
+            "large upload is read once more for it."
+        )
+    )
+
+
 def _parts(cells: Counts) -> list[str]:
     return [
         text
@@ -65,8 +75,9 @@ def settled(years: Sequence[str], status: str) -> Sentence:
     return (Piece(n_(*texts, len(years), years=names.listed(list(years), most=12))),)
 
 
-def choices(drops: Mapping[str, int]) -> tuple[tuple[str, str], ...]:
-    """What may give way to the upload, and what each choice drops of what the files do not hold."""
+def choices(drops: Mapping[str, int] | None) -> tuple[tuple[str, str], ...]:
+    """What may give way to the upload, and what each choice drops of what the files do not hold
+    (None: not counted)."""
     texts = {
         "cells": _("only the counts of the same area, sex, year and kind"),
         "handed": _("all that it holds of an area and year taken"),
@@ -74,6 +85,8 @@ def choices(drops: Mapping[str, int]) -> tuple[tuple[str, str], ...]:
         "areas": _("all that it holds of an area taken, in every year"),
         "all": _("all of it"),
     }
+    if drops is None:
+        return tuple(texts.items())
     return tuple(
         (key, _("{text}: {dropped}", text=text, dropped=_dropped(drops[key])))
         for key, text in texts.items()

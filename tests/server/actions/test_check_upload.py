@@ -154,9 +154,10 @@ def test_how_far_it_is_is_told_a_step_a_file(session: Session) -> None:
     map_upload(session, upload_id=upload.id, mappings=mappings, basis=BASIS, by=LOCAL, now=NOON)
     check_upload(session, upload_id=upload.id, tell=lambda *step: told.append(step))  # type: ignore[arg-type,misc]
     assert told == [
-        (0, 5, "opening the files"),
-        (1, 5, "reading the rows"),
-        (2, 5, "reading the rows"),
-        (3, 5, "checking the counts"),
-        (4, 5, "writing the report"),
+        (0, 6, "opening the files"),
+        (1, 6, "reading the rows"),
+        (2, 6, "reading the rows"),
+        (3, 6, "checking the counts"),
+        (4, 6, "comparing with what stands"),
+        (5, 6, "writing the report"),
     ]

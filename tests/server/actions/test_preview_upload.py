@@ -7,13 +7,15 @@ import pytest
 from sqlalchemy.orm import Session
 
 from server.accounts.viewer import LOCAL, NotAllowed, Viewer
+from server.actions.check_upload import check_upload
 from server.actions.commit_upload import commit_upload
-from server.actions.preview_upload import preview_upload
+from server.actions.map_upload import map_upload
+from server.actions.preview_upload import foresee_upload, preview_upload
 from server.results.preview import Preview
-from server.store import editions, schedules
-from server.store.errors import Stale
+from server.store import editions, foreseen, schedules
+from server.store.errors import Refused, Stale
 from server.store.records import ALL_OF_IT, GIVES_WAY, Key, Selection, Taking
-from tests.factories import COLUMNS, NOON, checked_upload, counts_csv, stored_collection
+from tests.factories import BASIS, COLUMNS, NOON, checked_upload, counts_csv, stored_collection
 
 WHOLE = replace(COLUMNS, whole="isle")
 CHOICES = [Taking(gives_way=choice) for choice in GIVES_WAY] + [
@@ -30,6 +32,10 @@ def first(session: Session) -> None:
 
 
 def shown(session: Session, upload: int, taking: Taking = ALL_OF_IT) -> Preview:
+    """What all of it would change is known since the checks; other choices are worked out."""
+    if taking != ALL_OF_IT:
+        assert preview_upload(session, upload_id=upload, taking=taking, by=LOCAL) is None
+        foresee_upload(session, upload_id=upload, taking=taking, by=LOCAL)
     found = preview_upload(session, upload_id=upload, taking=taking, by=LOCAL)
     assert found is not None
     return found
@@ -109,6 +115,51 @@ def test_nothing_is_written_and_refusals_are_told(session: Session) -> None:
     other = checked_upload(session, counts_csv(times=2), mapping=WHOLE)
     commit_upload(session, upload_id=other.id, note="n", by=LOCAL, now=NOON)
     assert isinstance(shown(session, upload.id).refusal, Stale)
+
+
+def test_it_is_told_without_the_files_being_read(
+    session: Session, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """A look at the page costs what it costs to read what was worked out; the same numbers as
+    when it is worked out anew."""
+    upload = checked_upload(session, counts_csv(times=2), mapping=WHOLE)
+    known = shown(session, upload.id)
+    foresee_upload(session, upload_id=upload.id, taking=ALL_OF_IT, by=LOCAL)
+    assert shown(session, upload.id) == known
+    one = Taking(areas=("north",), periods=("2002", "2001"), gives_way="areas")
+    other = shown(session, upload.id, one)
+
+    def unread(*_args: object, **_named: object) -> bytes:
+        raise AssertionError("the files were read")
+
+    monkeypatch.setattr("server.store.uploads.file_bytes", unread)
+    assert preview_upload(session, upload_id=upload.id, taking=ALL_OF_IT, by=LOCAL) == known
+    assert preview_upload(session, upload_id=upload.id, taking=one, by=LOCAL) == other
+    assert other.cells != known.cells
+
+
+def test_what_was_worked_out_falls_with_the_mapping_and_the_checks(session: Session) -> None:
+    upload = checked_upload(session, counts_csv(times=2), mapping=WHOLE)
+    one = Taking(periods=("2001",))
+    shown(session, upload.id, one)
+    check_upload(session, upload_id=upload.id)
+    assert preview_upload(session, upload_id=upload.id, taking=one, by=LOCAL) is None
+    assert shown(session, upload.id).schedules.changed
+    map_upload(
+        session, upload_id=upload.id, mappings={"counts": WHOLE}, basis=BASIS, by=LOCAL, now=NOON
+    )
+    assert foreseen.find(session, upload.id, taking="", base=1) is None
+    with pytest.raises(Refused, match="has not been checked"):
+        foresee_upload(session, upload_id=upload.id, taking=one, by=LOCAL)
+    assert preview_upload(session, upload_id=upload.id, taking=ALL_OF_IT, by=LOCAL) is None
+
+
+def test_nothing_is_worked_out_beside_another_base(session: Session) -> None:
+    upload = checked_upload(session, counts_csv(times=3), mapping=WHOLE)
+    other = checked_upload(session, counts_csv(times=2), mapping=WHOLE)
+    commit_upload(session, upload_id=other.id, note="n", by=LOCAL, now=NOON)
+    with pytest.raises(Stale, match="edition 2 stands now"):
+        foresee_upload(session, upload_id=upload.id, taking=Taking(periods=("2001",)), by=LOCAL)
 
 
 def test_an_unsound_upload_has_none(session: Session) -> None:

@@ -183,7 +183,7 @@ def test_a_sound_upload_says_what_was_understood(salt: Session) -> None:
 
 def _effect(session: Session, upload: int) -> Table:
     shown = preview_upload(session, upload_id=upload, taking=Taking(), by=LOCAL)
-    making = upload_problems.build(session, upload, shown).making
+    making = upload_problems.build(session, upload, Taking(), shown).making
     assert making is not None
     assert making.effect is not None
     (years,) = making.effect.years.tables

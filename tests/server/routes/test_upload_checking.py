@@ -130,11 +130,15 @@ def test_a_large_upload_is_made_an_edition_by_a_worker(
     monkeypatch.setattr(uploads, "AT_ONCE", 10)
     checked(client, app)
     asked = client.post("/uploads/1/commit", data={"note": "as delivered", "years": "2002"})
-    assert asked.headers["location"].startswith("/uploads/1/problems")  # first it is shown
+    looked = asked.headers["location"]  # first it is shown
+    assert looked == "/uploads/1/checking?job=2"
+    do(app)
+    shown = client.get(looked)
+    assert shown.headers["location"] == "/uploads/1/problems?years=2002&gives_way=cells#effect"
     chosen = {"note": "as delivered", "years": "2002", "shown": "years=2002&gives_way=cells"}
     asked = client.post("/uploads/1/commit", data=chosen)
     place = asked.headers["location"]
-    assert (asked.status_code, place) == (303, "/uploads/1/checking?job=2")
+    assert (asked.status_code, place) == (303, "/uploads/1/checking?job=3")
     page = client.get(place).text
     assert "The upload waits for its turn." in page
     assert "Either the whole edition is made or nothing of it." in page

@@ -68,9 +68,37 @@ def test_choices_that_cannot_be_read_are_refused(blank: TestClient) -> None:
     place = second(blank)
     assert blank.get(f"{place}/problems?years=soon").status_code == 400
     assert blank.get(f"{place}/problems?gives_way=much").status_code == 400
-    page = blank.get(f"{place}/problems?years=1950")
+    blank.post(f"{place}/commit", data={"do": "look", "years": "1950"})
+    page = blank.get(f"{place}/problems?years=1950&gives_way=cells")
     assert page.status_code == 200
     assert "The years 1950 were not handed in" in page.text
+
+
+def test_choices_that_were_not_worked_out_are_said_and_never_carried_out(
+    blank: TestClient,
+) -> None:
+    place = second(blank)
+    page = blank.get(f"{place}/problems?years=2001&gives_way=all").text
+    assert "What these choices would change has not been worked out yet." in page
+    checked = r'value="all"[^>]*checked|checked[^>]*value="all"'
+    assert re.search(checked, page)
+    seen = re.search(r'name="shown" value="([^"]*)"', page)
+    assert seen is not None
+    sent = {"note": "n", "years": "2001", "gives_way": "all", "shown": seen[1]}
+    answer = blank.post(f"{place}/commit", data=sent)
+    assert answer.headers["location"] == f"{place}/problems?years=2001&gives_way=all#effect"
+    page = blank.get(f"{place}/problems?years=2001&gives_way=all").text
+    assert "Edition 2 will change edition 1" in page
+
+
+def test_a_base_that_moved_is_said(blank: TestClient) -> None:
+    place = second(blank, times=3)
+    other = draft(blank, counts_csv(times=2), collection="salt")
+    blank.post(f"{other}/reading", data=AREAS)
+    blank.post(f"{other}/commit", data={"note": "between"})
+    page = blank.get(f"{place}/problems").text
+    assert "The checks ran against edition 1, but edition 2 stands now." in page
+    assert "Edition 2 will change" not in page
 
 
 def test_all_may_be_replaced(blank: TestClient) -> None:
