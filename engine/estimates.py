@@ -36,6 +36,7 @@ class Reason(IntEnum):
     NOT_DECOMPOSED = 19  # no exact share of the difference belongs to an age
     OPEN_AGE_TOO_LOW = 20  # the open group begins too low to be closed by its own death rate
     ACROSS_A_BREAK = 21  # the years added up lie on both sides of a break
+    A_STANDARD = 22  # a printed table, in which chance has no part
 
 
 @dataclass(frozen=True, slots=True)

@@ -8,7 +8,7 @@ from engine.decomposition.line import (
     contributions,
     contributions_by_cause,
 )
-from engine.decomposition.path import Path, along
+from engine.decomposition.path import Path, along, along_by_cause
 from engine.decomposition.rates import RateParts, kitagawa, of_crude_rates
 from engine.decomposition.simulated import Limits
 from engine.decomposition.stepwise import NOT_DECOMPOSED, Stepwise, stepwise
@@ -24,6 +24,7 @@ __all__ = [
     "Stepwise",
     "UnevennessParts",
     "along",
+    "along_by_cause",
     "arriaga",
     "contribution_limits",
     "contributions",

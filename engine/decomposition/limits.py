@@ -38,6 +38,7 @@ def contribution_limits(
     draws: int = 200,
     groups: AgeGrid | None = None,
     causes: Pair | None = None,
+    counted: Pair | None = None,
 ) -> Limits:
     """Limits of the contributions along the straight line, or of the stepwise ones where the
     indicator is not smooth, at the settings' level.
@@ -49,7 +50,9 @@ def contribution_limits(
     of the indicator itself are (`engine.chance.limits`). Not smooth: bias-corrected percentiles of
     the contributions of populations drawn anew, for which `streams` are needed. With `groups`, a
     coarser grid, they are limits of the sums over its groups; with `causes`, the deaths of this and
-    of that by cause, those of the contributions by cause (smooth only).
+    of that by cause, those of the contributions by cause (smooth only). Where deaths were moved
+    from one cause to others, `counted` are those counted under each: chance is in them, and each
+    stands for as many as its cause has at the age.
 
     Shape:   panels of one shape, shared [..., age], streams of this and of that [...]
              -> low, high [..., age], or [..., group]; of causes and what is shared of them
@@ -64,10 +67,10 @@ def contribution_limits(
     """
     groups = groups or this.grid
     if causes is not None:
-        return _smooth_limits(indicator, this, that, settings, causes, shared, groups)
+        return _smooth_limits(indicator, this, that, settings, causes, counted, shared, groups)
     if indicator.smooth:
         both = None if shared is None else shared[..., None, :]
-        found = _smooth_limits(indicator, this, that, settings, None, both, groups)
+        found = _smooth_limits(indicator, this, that, settings, None, None, both, groups)
         return Limits(*(end[..., 0, :] for end in found))
     if streams is None:
         raise ValueError(
@@ -89,6 +92,7 @@ def _smooth_limits(
     that: Panel,
     settings: Settings,
     causes: Pair | None,
+    counted: Pair | None,
     shared: Array | None,
     groups: AgeGrid,
 ) -> Limits:
@@ -98,14 +102,17 @@ def _smooth_limits(
         counts = this.counts[..., None, :], that.counts[..., None, :]
         steps = line.step[..., None, :]
     else:
-        counts = _as_counted(this, causes[0]), _as_counted(that, causes[1])
+        counts = counted or (_as_counted(this, causes[0]), _as_counted(that, causes[1]))
         steps = cause_steps(this, that, causes)
     both = np.zeros_like(counts[0]) if shared is None else shared
     with np.errstate(all="ignore"):
         mean = line.mean_slope(indicator)
-        moves = _moves(indicator, line, mean, steps, groups)
+        ours, theirs = _moves(indicator, line, mean, steps, groups)
+        if causes is not None and counted is not None:
+            ours = _stand_for(ours, this, causes[0], counted[0])
+            theirs = _stand_for(theirs, that, causes[1], counted[1])
         value = grid.regroup(cells(mean, steps, line.difference(indicator)), groups)
-        chance = _chance(*moves, *(_first(deaths) for deaths in (*counts, both)))
+        chance = _chance(ours, theirs, *(_first(deaths) for deaths in (*counts, both)))
         out = _astray(indicator, this, that, settings, causes, groups)
         chance = replace(chance, astray=chance.astray + _ahead(out))
         ends = limits("mixed", _ahead(value), chance, settings.level)
@@ -148,6 +155,15 @@ def _per_death(by_rate: Array, chain: Chain) -> Array:
     counted."""
     turned = np.ascontiguousarray(np.swapaxes(by_rate, 0, -1))
     return per_count(chain.panel, chain.rates.per_death(chain.rates.pull(turned)))
+
+
+def _stand_for(moved: _Moves, panel: Panel, causes: Array, counted: Array) -> _Moves:
+    """The same where a death counted under a cause stands for others of it, moved there from other
+    causes: all causes together it is still one."""
+    worth = 1.0 if panel.worth is None else panel.worth[..., None, :]
+    with np.errstate(all="ignore"):
+        deaths = np.where(counted > 0, causes / counted / worth, 1.0)
+    return _Moves(moved.own * _first(deaths), moved.all)
 
 
 def _as_counted(panel: Panel, causes: Array) -> Array:

@@ -6,7 +6,7 @@ import numpy as np
 
 from engine.ages import Array
 from engine.chain import Reading
-from engine.decomposition.line import Contributions, contributions
+from engine.decomposition.line import Contributions, contributions, contributions_by_cause
 from engine.panel import Panel
 from engine.settings import Settings
 
@@ -56,3 +56,17 @@ def along(indicator: Reading, years: Panel, settings: Settings) -> Path:
     steps = contributions(indicator, years[1:], years[:-1], settings)
     straight = contributions(indicator, years[-1], years[0], settings)
     return Path(steps.by_age, steps.remainder, straight)
+
+
+def along_by_cause(indicator: Reading, years: Panel, settings: Settings, *, causes: Array) -> Array:
+    """The contribution of every cause at every age along the same path: the steps summed.
+
+    Shape:   years [year, ..., age], causes [year, ..., cause, age] -> [..., cause, age].
+    Missing, raises, source: as `along` and `contributions_by_cause`.
+    """
+    if not years.batch_shape or years.batch_shape[0] < 2:
+        raise ValueError("a path needs at least two years; put years on the first axis")
+    steps = contributions_by_cause(
+        indicator, years[1:], years[:-1], settings, causes=(causes[1:], causes[:-1])
+    )
+    return np.asarray(steps.by_cause.sum(axis=0))

@@ -71,6 +71,7 @@ def reason(code: int, settings: Settings) -> str:
         Reason.ACROSS_A_BREAK: _(
             "The years added up lie on both sides of a break, which no figure crosses."
         ),
+        Reason.A_STANDARD: _("It is read off a printed table, in which chance has no part."),
         Reason.NOT_DECOMPOSED: _("No exact share of this difference belongs to an age."),
     }
     return sentences[Reason(code)]

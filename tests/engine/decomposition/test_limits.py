@@ -272,6 +272,53 @@ def test_limits_by_cause_are_those_of_every_count_moved_by_itself(key: str, part
 
 
 @pytest.mark.fast
+def test_a_death_counted_that_stands_for_others_of_its_cause_moves_it_by_as_many() -> None:
+    """Ill-defined deaths were moved to the first cause: of 5 of its deaths 4 were counted there.
+    By brute force, a row of its own keeping all causes together at those counted."""
+    pair = large(PAIRS["Danish men 1974 to 2012"])
+    counted = split(pair, (2.0, 1.0, 0.5))
+    causes = tuple(
+        np.stack([side[0] + side[2], side[1], np.zeros_like(side[2])]) for side in counted
+    )
+    found = widths(
+        contribution_limits(
+            INDICATORS["e0"], pair.this, pair.that, PLAIN, causes=causes, counted=counted
+        )
+    )
+    stands_for = [
+        np.divide(side[0], count[0], out=np.ones_like(count[0]), where=count[0] > 0)
+        for side, count in zip(causes, counted, strict=True)
+    ]
+
+    def by_cause(ours: Array, theirs: Array) -> Array:
+        rows, sides = [], []
+        for panel, count, each in zip(
+            (pair.this, pair.that), (ours, theirs), stands_for, strict=True
+        ):
+            total, first = count.sum(axis=-2), each * count[..., 0, :]
+            rest = total - first - count[..., 1, :]
+            rows.append(np.stack([first, count[..., 1, :], rest], axis=-2))
+            sides.append(replace(copies(panel, len(count)), deaths=total))
+        return contributions_by_cause(INDICATORS["e0"], *sides, PLAIN, causes=tuple(rows)).by_cause
+
+    variance = np.zeros_like(counted[0])
+    cells = np.eye(variance.size).reshape(-1, *variance.shape)
+    still = np.broadcast_to(1.0, (variance.size, 1, 1))
+    for at in (0, 1):
+        aside = 1e-4 * np.maximum(counted[at], 1e-3) * cells
+        ends = []
+        for sign in (1, -1):
+            moved = [side * still for side in counted]
+            moved[at] = moved[at] + sign * aside
+            ends.append(by_cause(*moved))
+        slope = (ends[0] - ends[1]) / (2 * aside.sum(axis=(-2, -1)))[:, None, None]
+        variance += (slope**2 * counted[at].reshape(-1)[:, None, None]).sum(axis=0)
+    expected = np.sqrt(variance)[:2]
+    read = expected > 1e-6 * expected.max()
+    np.testing.assert_allclose(found[:2][read], expected[read], rtol=0.005)
+
+
+@pytest.mark.fast
 @pytest.mark.parametrize("settings", ["almanac-1", "almanac-1-population-2"])
 def test_limits_of_one_cause_that_holds_all_deaths_are_those_of_the_ages(settings: str) -> None:
     pair, chain = PAIRS["men across the break of a0"], find(settings)

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from engine.chain import Reading, Tally, run
-from engine.decomposition import along, contributions
+from engine.decomposition import along, along_by_cause, contributions
 from engine.indicators import INDICATORS
 from engine.panel import Panel
 from tests.engine.decomposition.pairs import PAIRS, PLAIN
@@ -106,3 +106,19 @@ def test_one_year_is_no_path() -> None:
         along(INDICATORS["e0"], danes()[:1], PLAIN)
     with pytest.raises(ValueError, match=r"at least two years"):
         along(INDICATORS["e0"], danes()[0], PLAIN)
+
+
+@pytest.mark.fast
+def test_the_causes_of_an_age_add_up_to_the_age_along_the_path() -> None:
+    """One of them changes in the first step alone, and contributes in no other."""
+    years = danes()[[0, 12, 25, 38]]
+    share = np.array([0.2, 0.4, 0.4, 0.4])[:, None]
+    causes = np.stack([share * years.deaths, (1 - share) * years.deaths], axis=-2)
+    found = along_by_cause(INDICATORS["e0"], years, PLAIN, causes=causes)
+    ages = along(INDICATORS["e0"], years, PLAIN)
+    np.testing.assert_allclose(found.sum(axis=-2), ages.by_age, atol=1e-12)
+    first = along_by_cause(INDICATORS["e0"], years[:2], PLAIN, causes=causes[:2])
+    rest = along(INDICATORS["e0"], years[1:], PLAIN)
+    np.testing.assert_allclose(found[0] - first[0], 0.4 * rest.by_age, atol=1e-12)
+    with pytest.raises(ValueError, match="two years"):
+        along_by_cause(INDICATORS["e0"], years[0], PLAIN, causes=causes[0])
