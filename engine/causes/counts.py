@@ -37,6 +37,16 @@ class CauseCounts:
             return self.deaths
         return np.where((self.counted > 0) | np.isnan(self.deaths), self.counted, self.deaths)
 
+    @property
+    def worth(self) -> Array:
+        """Deaths that each one counted stands for, [..., cause, age]; as `Panel.worth`."""
+        if self.counted is None:
+            return np.ones(self.deaths.shape)
+        with np.errstate(divide="ignore", invalid="ignore"):
+            together = self.deaths.sum(axis=-1) / self.counts.sum(axis=-1)
+            usual = np.where(np.isfinite(together), together, 1.0)[..., None]
+            return np.where(self.counts > 0, self.deaths / self.counts, usual)
+
     def shares(self, panel: Panel) -> Array:
         """Share of each cause in the deaths at its age, [..., cause, age]; where nobody died, that
         of the cause in all deaths together."""

@@ -102,13 +102,13 @@ def cause_steps(this: Panel, that: Panel, causes: tuple[Array, Array]) -> Array:
     """
     rates = []
     for panel, deaths in zip((this, that), causes, strict=True):
-        _require_all(panel, deaths)
+        require_all(panel, deaths)
         exposure = np.ascontiguousarray(panel.exposure[..., None, :])
         rates.append(death_rates(deaths, exposure).mx)
     return np.asarray(rates[0] - rates[1])
 
 
-def _require_all(panel: Panel, causes: Array) -> None:
+def require_all(panel: Panel, causes: Array) -> None:
     """Refuse causes of death that do not add up to the deaths of the panel."""
     summed, deaths = np.broadcast_arrays(causes.sum(axis=-2), panel.deaths)
     with np.errstate(invalid="ignore"):

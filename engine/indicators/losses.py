@@ -11,7 +11,7 @@ from engine.indicators.expectancy import RATIO, YEARS, at_birth
 from engine.tables import LifeTable, Partials
 
 
-def _lost_by_group(table: LifeTable) -> Array:
+def lost_by_group(table: LifeTable) -> Array:
     """Years lost by a death in each group on average, [..., age]."""
     share = table.ax[..., :-1] / table.grid.widths[:-1]
     here, after = table.ex[..., :-1], table.ex[..., 1:]
@@ -19,7 +19,7 @@ def _lost_by_group(table: LifeTable) -> Array:
 
 
 def _edagger(chain: Chain) -> Array:
-    total: Array = (chain.table.dx * _lost_by_group(chain.table)).sum(axis=-1)
+    total: Array = (chain.table.dx * lost_by_group(chain.table)).sum(axis=-1)
     return total
 
 
@@ -32,7 +32,7 @@ def _lost_partials(table: LifeTable, *, per: Array, by_mean: Array) -> Partials:
     by_ax = np.zeros_like(by_ex)
     by_ax[..., :-1] = dx * (table.ex[..., 1:] - table.ex[..., :-1]) / n
     by_ex = by_ex / per + at_birth(table, by_mean)
-    return Partials(dx=_lost_by_group(table) / per, ex=by_ex, ax=by_ax / per)
+    return Partials(dx=lost_by_group(table) / per, ex=by_ex, ax=by_ax / per)
 
 
 def _edagger_partials(chain: Chain) -> Partials:
@@ -66,7 +66,7 @@ def threshold(table: LifeTable, level: Array) -> Threshold:
     """
     ex, starts = table.ex, np.array(table.grid.starts, float)
     with np.errstate(all="ignore"):
-        lost = np.flip(np.cumsum(np.flip(table.dx * _lost_by_group(table), -1), -1), -1) / table.lx
+        lost = np.flip(np.cumsum(np.flip(table.dx * lost_by_group(table), -1), -1), -1) / table.lx
         risen, pace = lost / ex - np.log(table.lx), ex**2 / lost
         after = np.argmax(risen > level[..., None], axis=-1)
         known = (after > 0) & np.isfinite(table.lx).all(axis=-1)
@@ -104,7 +104,7 @@ def _early(chain: Chain) -> Array:
     inside = (found.age - starts) / table.grid.widths[found.group]
     positions, group = np.arange(len(table.grid)), found.group[..., None]
     before = np.where(positions < group, 1.0, np.where(positions == group, inside[..., None], 0.0))
-    early: Array = (before * table.dx * _lost_by_group(table)).sum(axis=-1)
+    early: Array = (before * table.dx * lost_by_group(table)).sum(axis=-1)
     return early
 
 

@@ -10,7 +10,7 @@ from engine.ages import AgeGrid, Array
 from engine.chain import Chain
 from engine.estimates import Reason
 from engine.indicator import Indicator, Needs, Unit
-from engine.indicators.pattern import Pattern
+from engine.indicators.pattern import AGE, Pattern, require_ages
 from engine.indicators.rates import PER_100000
 from engine.panel import Panel
 from engine.standardisation import (
@@ -43,6 +43,37 @@ def by_standard(standard: Standard) -> Indicator:
         note=standard.note,
         source=f"{standard.source} (the weights); {LIMITS}",
         needs=Needs(least_deaths=LEAST_DEATHS),
+    )
+
+
+def before_age(age: int, key: str) -> Indicator:
+    """The death rate before an exact age, at the ages of a printed standard before it."""
+    require_ages(0, age)
+    standard = STANDARDS[key]
+    if not standard.grid.has(age):
+        raise ValueError(
+            f"no age group of the {standard.label} begins at {age}; those are {standard.grid.code}"
+        )
+    people = np.where(np.array(standard.starts) < age, standard.weights, 0.0)
+
+    def read(chain: Chain) -> Weighted:
+        grid, rates = chain.panel.grid, chain.rates
+        if not grid.has(age):
+            return _nothing(chain)
+        younger = np.array(grid.starts) < age
+        deaths = (np.real(rates.mx * rates.exposure) * younger).sum(axis=-1)
+        found = _direct(chain, people, standard.grid)
+        return Weighted(np.where(deaths >= LEAST_DEATHS, found.value, np.nan), found.gradient)
+
+    return _standardised(
+        read,
+        key=f"asr{age}_{key}",
+        symbol=f"ASR {age} {standard.symbol}",
+        label=f"Age-standardised death rate before {age} ({standard.label})",
+        of=f"the {standard.label} before {age}",
+        note=f"Deaths from {age} on do not count, nor the years lived there.",
+        source=f"{standard.source} (the weights); {LIMITS}",
+        needs=Needs(ages=(age,), least_deaths=LEAST_DEATHS, otherwise=Reason.TOO_FEW_DEATHS),
     )
 
 
@@ -189,4 +220,7 @@ FAMILY = (
     ),
 )
 CODE = r"[A-Za-z0-9_.-]{1,32}\.[fmp]\.[0-9]{4}"  # area, sex, year
-PATTERNS = (Pattern("asr_by_north.f.2020", re.compile(f"asr_by_({CODE})"), by_population),)
+PATTERNS = (
+    Pattern("asr_by_north.f.2020", re.compile(f"asr_by_({CODE})"), by_population),
+    Pattern("asr75_esp2013", re.compile(f"asr{AGE}_({'|'.join(STANDARDS)})"), before_age),
+)

@@ -7,7 +7,7 @@ import pytest
 
 from engine.chain import gradient, run
 from engine.indicators import INDICATORS
-from engine.indicators.losses import _lost_by_group, threshold
+from engine.indicators.losses import lost_by_group, threshold
 from engine.settings import SETTINGS
 from tests.factories import GRIDS, gompertz_panel
 
@@ -71,7 +71,7 @@ def test_the_threshold_ages_satisfy_what_defines_them(grid: str) -> None:
     chain = run(gompertz_panel(GRIDS[grid], seed=1, infant=0.01), SETTINGS_1)
     table = chain.table
     for x in (GRIDS[grid].position(age) for age in (60, 70, 80)):
-        lost = (table.dx * _lost_by_group(table))[x:].sum() / table.lx[x]
+        lost = (table.dx * lost_by_group(table))[x:].sum() / table.lx[x]
         level = lost / table.ex[x] - np.log(table.lx[x])
         found = threshold(table, level)
         assert found.age == pytest.approx(table.grid.starts[x], abs=1e-9)
@@ -106,7 +106,7 @@ def test_early_and_late_deaths_make_up_the_whole(key: str) -> None:
 def test_early_deaths_are_those_below_the_threshold() -> None:
     chain = run(gompertz_panel(GRIDS["single"], seed=1), SETTINGS_1)
     table, age = chain.table, float(THRESHOLDS["edagger"].value(chain))
-    lost = np.append(0, np.cumsum(table.dx * _lost_by_group(table)))[: len(table.grid)]
+    lost = np.append(0, np.cumsum(table.dx * lost_by_group(table)))[: len(table.grid)]
     assert EARLY.value(chain) == pytest.approx(np.interp(age, table.grid.starts, lost), rel=1e-12)
 
 

@@ -1,0 +1,103 @@
+"""Multiple decrement tables: of what those born would die, and when."""
+
+import numpy as np
+
+from engine.ages import Array
+from engine.causes.counts import CauseCounts
+from engine.causes.number import CauseNumber
+from engine.causes.parting import Parted, Slopes, part
+from engine.estimates import Reason
+from engine.indicator import Needs, Unit
+from engine.panel import Panel
+from engine.settings import Settings
+from engine.tables import Partials
+
+CHANCE = Unit("per_100_births", "per 100 births", 100, 1, limits="part")
+AGE = Unit("age", "years", 1, 1)
+
+SOURCE = (
+    "Chiang (1968), Introduction to Stochastic Processes in Biostatistics, chapter 11; Preston,"
+    " Heuveline & Guillot (2001), Demography, chapter 4"
+)
+AS_COUNTED = (
+    "Where the rates of the table are not those counted (smoothed ones, a law of old ages), its"
+    " deaths at an age are parted as those counted there."
+)
+
+
+def deaths_in_table(panel: Panel, causes: CauseCounts, settings: Settings) -> Array:
+    """Deaths of the life table by cause, d_i(x) = d(x) m_i(x) / m(x) of 1 born, which add up to
+    those of the table.
+
+    Shape:   panel [..., age], causes [..., cause, age] -> [..., cause, age] on the panel's grid.
+    Missing: nan where the table is.
+    Source:  Chiang (1968), Introduction to Stochastic Processes in Biostatistics, chapter 11.
+    """
+    parted = part(panel, causes, settings)
+    table = parted.chain.table
+    return table.grid.regroup(np.moveaxis(parted.share * table.dx, 0, -2), panel.grid)
+
+
+def chance_before(age: int | None) -> CauseNumber:
+    """The chance of a newborn child to die of the cause before an exact age; None: at any age."""
+
+    def read(parted: Parted) -> Slopes:
+        table = parted.chain.table
+        inside = np.full(len(table.grid), True)
+        if age is not None:
+            inside = np.array(table.grid.starts) < age
+        Lx, mx = np.where(inside, table.Lx, 0.0), np.where(inside, parted.mx, 0.0)
+        value = (mx * Lx).sum(axis=-1)
+        if age is not None and not table.grid.has(age):
+            value = np.full_like(value, np.nan)
+        return Slopes(value, Partials(Lx=mx), np.broadcast_to(Lx, mx.shape))
+
+    span = "" if age is None else f" before {age}"
+    return CauseNumber(
+        key="chance" if age is None else f"chance{age}",
+        symbol="Q" if age is None else f"Q{age}",
+        label=f"Chance of dying of it{span}",
+        unit=CHANCE,
+        definition=(
+            f"How many of a hundred children born would die of the cause{span} if the death rates"
+            f" of the year, of this and of all other causes, held for all their lives. {AS_COUNTED}"
+        ),
+        formula=f"sum of d(x) m_i(x) / m(x) over all ages{span}, births taken as 100",
+        source=SOURCE,
+        needs=Needs(open_deaths=True) if age is None else Needs(ages=(age,)),
+        adds_up=True,
+        read=read,
+    )
+
+
+def _mean_age(parted: Parted) -> Slopes:
+    table = parted.chain.table
+    dx, age = parted.mx * table.Lx, np.array(table.grid.starts, float) + table.ax
+    total = dx.sum(axis=-1)
+    value = np.where(np.real(total) > 0, (dx * age).sum(axis=-1) / total, np.nan)
+    per = 1 / np.where(np.real(total) > 0, total, np.nan)[..., None]
+    later = (age - value[..., None]) * per
+    return Slopes(value, Partials(Lx=parted.mx * later, ax=dx * per), table.Lx * later)
+
+
+MEAN_AGE = CauseNumber(
+    key="mean_age",
+    symbol="A",
+    label="Mean age at death",
+    unit=AGE,
+    definition=(
+        "The mean age at which those of the life table who die of the cause do so: the death rates"
+        " of the year are taken, not the ages of the people there are. Within an age group deaths"
+        f" of every cause lie like those of all. {AS_COUNTED}"
+    ),
+    formula=(
+        "sum of d_i(x) (x + a(x)) / sum of d_i(x), d_i(x) the deaths of the table of the cause,"
+        " a(x) of the open group the life expectancy there"
+    ),
+    source=SOURCE,
+    needs=Needs(open_deaths=True, otherwise=Reason.NO_DEATHS),
+    adds_up=False,
+    read=_mean_age,
+)
+LIFETIME, BEFORE_75 = chance_before(None), chance_before(75)
+FAMILY = (LIFETIME, BEFORE_75, MEAN_AGE)
