@@ -20,7 +20,7 @@ from server.actions.receive_upload import receive_upload
 from server.intake import mapping as intake
 from server.store import areas, collections, editions, records, schedules, uploads
 from server.store.connect import Session, transaction
-from server.store.records import Area, Basis, Change, Edition, Key, Vector
+from server.store.records import Area, Basis, Change, Edition, Key, Selection, Vector
 
 # ---- engine: panels -----------------------------------------------------------------------------
 
@@ -146,10 +146,13 @@ def edition(
     delivered: Collection[str] = (),
     provisional: Collection[str] = (),
     breaks: tuple[records.Break, ...] = (),
+    causes: tuple[records.Cause, ...] = (),
+    by_cause: Mapping[str, Mapping[str, ArrayLike]] | None = None,
     note: str = "",
 ) -> Edition:
     """A further edition of a collection, made anew where there is none. `panels` are named by their
     population-years ("north.f.2014"), `provisional` names years; totals are summed as at a commit.
+    `causes` are a cause list, `by_cause` deaths by its codes, of some of the population-years.
     """
     parents = parents or {}
     with transaction(session):
@@ -163,6 +166,9 @@ def edition(
         status = "provisional" if period in provisional else "final"
         for measure, counts in (("deaths", panel.deaths), ("person_years", panel.exposure)):
             cells[Key(area, sex, period, measure)] = Vector(status, panel.grid, counts)
+        for cause, deaths in (by_cause or {}).get(name, {}).items():
+            counted = Vector(status, panel.grid, np.asarray(deaths, float))
+            cells[Key(area, sex, period, "deaths", cause)] = counted
         for measure, count in zip(records.MEASURES[2:5], panel.births, strict=True):
             if np.isfinite(count):
                 all_ages = Vector(status, AgeGrid((0,)), np.array([count]))
@@ -172,9 +178,18 @@ def edition(
     listed = totals.merged(
         [Area(one, one.title(), parents.get(one, ""), one in delivered) for one in named], stood
     )
-    held = schedules.load(session, code, base) if base else {}
+    held = schedules.load(session, code, base, Selection(cause=None)) if base else {}
     summed = totals.totalled(cells, listed, base=held, base_areas=stood)
-    change = Change(code, base, summed.cells, listed, BASIS, ended=summed.ended, breaks=breaks)
+    change = Change(
+        code,
+        base,
+        summed.cells,
+        listed,
+        BASIS,
+        ended=summed.ended,
+        breaks=breaks,
+        causes=causes,
+    )
     prepared, masked = editions.prepare(session, change), masking.mask_of(session, change)
     with transaction(session):
         made = editions.write(session, prepared, by="the desk", note=note, at=NOON)

@@ -7,9 +7,9 @@ from server.results.breaks import between, parting
 from server.results.questions import PopulationYear
 from server.sentences.names import listed
 from server.sentences.text import _
-from server.store import areas, breaks, schedules
+from server.store import areas, breaks, causes, schedules
 from server.store.connect import Session
-from server.store.records import Area, Break
+from server.store.records import Area, Break, Cause
 
 
 class NotInEdition(LookupError):
@@ -27,6 +27,7 @@ class Holdings:
     status: dict[PopulationYear, str]
     breaks: tuple[Break, ...] = ()
     revised: frozenset[PopulationYear] = frozenset()  # this edition changed their counts
+    causes: tuple[Cause, ...] = ()  # its cause list, each before its parts; empty: it has none
 
     def broken(self, one: PopulationYear) -> bool:
         """Whether a break lies before its year: it is the first of another kind."""
@@ -116,7 +117,7 @@ class Holdings:
 
 
 def holdings(session: Session, collection: str, number: int) -> Holdings:
-    """Three statements."""
+    """Four statements."""
     contents = schedules.contents(session, collection, number)
     return Holdings(
         areas.listing(session, collection, number),
@@ -125,4 +126,5 @@ def holdings(session: Session, collection: str, number: int) -> Holdings:
         {PopulationYear(*key): status for key, status in contents.status.items()},
         breaks.listing(session, collection, number),
         frozenset(PopulationYear(*key) for key in contents.revised),
+        causes.listing(session, collection, number),
     )

@@ -8,11 +8,13 @@ from typing import Self
 
 from engine import indicators, settings
 from engine.panel import SEXES
+from server.results.causes import CauseChoice
 from server.sentences.text import _
 
 CODE = re.compile(r"[A-Za-z0-9_.-]{1,32}")
 PERIOD = re.compile(r"[0-9]{4}")
 FIGURES = ("released", "full")
+CAUSE_KEYS = tuple(CauseChoice.VALUES)  # in an address before `figures`
 DEFAULT_SETTINGS = "almanac-1"
 DEFAULT_INDICATOR = "e0"
 
@@ -168,6 +170,16 @@ class Keys:
                 )
             )
         return found
+
+    def causes(self) -> CauseChoice | None:
+        """How deaths by cause are shown; None where the address says nothing of it."""
+        if not any(self.one(key) for key in CAUSE_KEYS):
+            return None
+        values = (
+            self.choice(key, self.one(key) or known[0], known)
+            for key, known in CauseChoice.VALUES.items()
+        )
+        return CauseChoice(*values)
 
     def figures(self) -> str:
         return self.choice("figures", self.one("figures", FIGURES[0]), FIGURES)

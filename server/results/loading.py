@@ -2,7 +2,7 @@
 
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
-from typing import Any, NamedTuple, Self
+from typing import Any, Self
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,6 +11,8 @@ from engine.ages import AgeGrid, Array
 from engine.indicators import Indicator
 from engine.panel import BIRTHS, Panel
 from engine.settings import Settings, span
+from server.results.by_cause import Pool, by_cause
+from server.results.causes import CauseChoice, Causes, Listed
 from server.results.questions import PopulationYear
 from server.results.releasing import released
 from server.store.connect import Session
@@ -29,6 +31,7 @@ class Loaded:
     protected: bool = False  # something it rests on is withheld
     births_withheld: frozenset[str] = frozenset()  # of engine.panel.BIRTHS
     estimated: bool = False  # its counts were split by shares, or worked out from rates
+    causes: Causes | None = None  # where they were asked for and every year has some
 
     def withheld_on(self, grid: AgeGrid) -> NDArray[np.bool_]:
         """Groups of a grid it can be summed to that hold a withheld one, [age]."""
@@ -57,6 +60,7 @@ class Beside:
     years: int = 1  # pooled: the year asked for and those before it
     parents: Mapping[str, str] = field(default_factory=dict)  # area to the one it is part of
     standard: PopulationYear | None = None  # whose people weight the ages
+    causes: CauseChoice | None = None  # how deaths by cause are shown; None: not asked for
 
     @classmethod
     def of(cls, settings: Settings, tree: Iterable[Area], *of: Indicator) -> Self:
@@ -79,14 +83,17 @@ def load(
     figures: str = "released",
 ) -> "Found":
     """Panels of those population-years that the edition holds; the others are left out, those too
-    of which it lacks one of the years to be pooled. One statement.
+    of which it lacks one of the years to be pooled. One statement; with causes of death one or two
+    more, which read their list.
 
     Persons take their first-year rule from women and men where it holds both. As released,
     stand-ins take the place of withheld counts; in full, nothing is withheld.
     """
     asked = tuple(dict.fromkeys(wanted))
+    listed = Listed.read(session, collection, number, beside.causes) if beside.causes else None
     chosen = needed(asked, beside)
-    return assembled(released(session, collection, number, chosen, figures), asked, beside)
+    cells = released(session, collection, number, chosen, figures)
+    return assembled(cells, asked, beside, listed)
 
 
 def needed(wanted: Iterable[PopulationYear | Shared], beside: Beside = Beside()) -> Selection:
@@ -103,13 +110,18 @@ def needed(wanted: Iterable[PopulationYear | Shared], beside: Beside = Beside())
         sexes=tuple(sorted(sexes)),
         periods=tuple(sorted({period for pool in pools for period in pool.periods})),
         measures=MEASURES,
+        cause="" if beside.causes is None else None,
     )
 
 
 def assembled(
-    cells: Cells, wanted: Iterable[PopulationYear | Shared], beside: Beside = Beside()
+    cells: Cells,
+    wanted: Iterable[PopulationYear | Shared],
+    beside: Beside = Beside(),
+    listed: Listed | None = None,
 ) -> "Found":
-    """Panels of those population-years that these schedules hold; as `load`."""
+    """Panels of those population-years that these schedules hold, by the causes that are listed; as
+    `load`."""
     asked = tuple(dict.fromkeys(wanted))
     wholes: dict[PopulationYear | Shared, PopulationYear | None] = {
         one: _whole(one, beside) for one in asked if isinstance(one, PopulationYear)
@@ -117,6 +129,8 @@ def assembled(
     pools = {one: _pool(one, beside.years) for one in (*asked, *wholes.values()) if one}
     standard = _pool(beside.standard, 1) if beside.standard else None
     found = {one: _assembled(cells, pool) for one, pool in pools.items()}
+    if beside.causes and listed and listed.causes:
+        found |= _with_causes(cells, {one: pools[one] for one in asked}, found, listed, beside)
     weights = _assembled(cells, standard) if standard else None
     return {
         one: _with(own, found[whole] if whole else None, weights)
@@ -129,18 +143,10 @@ def assembled(
 Found = dict[PopulationYear | Shared, Loaded]
 
 
-class _Pool(NamedTuple):
-    """Whose counts are summed, over which years."""
-
-    area: str
-    sex: str
-    periods: tuple[str, ...]
-
-
-def _pool(one: "PopulationYear | Shared", years: int) -> _Pool:
+def _pool(one: "PopulationYear | Shared", years: int) -> Pool:
     if isinstance(one, Shared):
-        return _Pool(one.area, one.sex, one.periods)
-    return _Pool(one.area, one.sex, span(one.period, years))
+        return Pool(one.area, one.sex, one.periods)
+    return Pool(one.area, one.sex, span(one.period, years))
 
 
 def _whole(one: PopulationYear, beside: Beside) -> PopulationYear | None:
@@ -159,12 +165,37 @@ def _with(own: Loaded, whole: Loaded | None, standard: Loaded | None) -> Loaded:
     return replace(own, panel=replace(panel, **beside), protected=protected)
 
 
+def _with_causes(
+    cells: Cells,
+    pools: Mapping[PopulationYear | Shared, Pool],
+    found: Mapping[PopulationYear | Shared, Loaded | None],
+    listed: Listed,
+    beside: Beside,
+) -> dict[PopulationYear | Shared, Loaded]:
+    """Those that have counts by cause, on the age groups that these share with them."""
+    held = {one: own for one in pools if (own := found[one]) is not None}
+    panels = {pools[one]: own.panel for one, own in held.items()}
+    causes = by_cause(cells, panels, listed, beside.causes or CauseChoice())
+    made = {}
+    for one, own in held.items():
+        if pools[one] in causes:
+            grid, known = causes[pools[one]]
+            hidden = np.array(grid.starts)[own.withheld_on(grid)]
+            made[one] = replace(
+                own,
+                panel=own.panel.regroup(grid),
+                withheld=frozenset(hidden.tolist()),
+                causes=known,
+            )
+    return made
+
+
 def _on(other: Panel, grid: AgeGrid) -> Panel | None:
     """Another panel on this grid; None where its groups are coarser."""
     return other.regroup(grid) if set(grid.starts) <= set(other.grid.starts) else None
 
 
-def _assembled(cells: Cells, pool: _Pool) -> Loaded | None:
+def _assembled(cells: Cells, pool: Pool) -> Loaded | None:
     own = _summed(cells, pool)
     if pool.sex != "p":
         return own
@@ -191,7 +222,7 @@ def _assembled(cells: Cells, pool: _Pool) -> Loaded | None:
     return replace(own, panel=replace(own.panel, births=births, **mix), protected=mixed)
 
 
-def _summed(cells: Cells, pool: _Pool) -> Loaded | None:
+def _summed(cells: Cells, pool: Pool) -> Loaded | None:
     parts = [_single(cells, pool, period) for period in pool.periods]
     found = [part for part in parts if part is not None]
     if len(found) < len(parts):
@@ -208,7 +239,7 @@ def _summed(cells: Cells, pool: _Pool) -> Loaded | None:
     )
 
 
-def _single(cells: Cells, pool: _Pool, period: str) -> Loaded | None:
+def _single(cells: Cells, pool: Pool, period: str) -> Loaded | None:
     deaths, years, *births = (
         cells.get(Key(pool.area, pool.sex, period, measure)) for measure in MEASURES[:5]
     )
@@ -237,7 +268,7 @@ def _single(cells: Cells, pool: _Pool, period: str) -> Loaded | None:
     )
 
 
-def _counted(cells: Cells, pool: _Pool, period: str, grid: AgeGrid) -> Array | None:
+def _counted(cells: Cells, pool: Pool, period: str, grid: AgeGrid) -> Array | None:
     """Deaths as counted, where others were shared out among them. Of a group whose deaths are
     withheld nothing is told: those that stand in for them count."""
     deaths, counted = (

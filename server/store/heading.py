@@ -11,13 +11,27 @@ from server.store.base import LARGEST
 from server.store.errors import Missing
 from server.store.records import Collection as CollectionRecord
 from server.store.records import Edition as EditionRecord
-from server.store.tables import BasisRange, Collection, Edition, EditionEvent, Mask, Policy
+from server.store.tables import (
+    BasisRange,
+    CauseRange,
+    Collection,
+    Edition,
+    EditionEvent,
+    Mask,
+    Policy,
+)
 
 _POLICY = (
     select(func.max(Policy.number))
     .where(Policy.collection_id == Collection.id)
     .correlate(Collection)
     .scalar_subquery()
+)
+_CAUSES = (
+    select(CauseRange.id)
+    .where(CauseRange.collection_id == Collection.id, CauseRange.holds_in(bindparam("number")))
+    .correlate(Collection)
+    .exists()
 )
 # made once: putting the statement together takes longer than running it
 _STATEMENT = (
@@ -31,6 +45,7 @@ _STATEMENT = (
         editions.standing_number(Collection.id).label("newest"),
         _POLICY.label("policy"),
         Mask.digest.label("mask"),
+        _CAUSES.label("causes"),
         *editions.COLUMNS,
     )
     .outerjoin(
@@ -58,6 +73,7 @@ class Heading:
     newest: int | None  # number of the newest standing edition; None: all are withdrawn
     policy: int | None = None  # number of the policy that holds; None: everything is shown
     mask: str = ""  # digest of the edition and its mask under that policy
+    causes: bool = False  # whether the edition has a cause list
 
     @property
     def released(self) -> Self:
@@ -89,4 +105,5 @@ def heading(session: Session, collection_code: str, number: int) -> Heading:
         row.newest,
         row.policy,
         row.mask or "",
+        bool(row.causes),
     )
