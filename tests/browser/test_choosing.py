@@ -101,12 +101,3 @@ def test_another_area_sex_and_year_by_form(demo_site: Site, visit: Enter, script
     page.get_by_role("button", name="Show it").click()
     page.wait_for_url("**of=quillmere.m.2005**")
     assert "Quillmere" in page.locator("h1.answer").inner_text()
-
-
-@pytest.mark.parametrize("name", READ)
-def test_words_and_tables_stand_without_scripts(demo_site: Site, visit: Enter, name: str) -> None:
-    plain = visit(demo_site, scripts=False).goto(READ[name])
-    assert plain.locator("h1.answer").is_visible()
-    with_scripts = visit(demo_site).goto(READ[name])
-    assert plain.locator("table").count() == with_scripts.locator("table").count()
-    assert plain.locator("h1.answer").inner_text() == with_scripts.locator("h1.answer").inner_text()
