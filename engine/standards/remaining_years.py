@@ -25,3 +25,5 @@ GBD_2010 = RemainingYears(
         " Lopez (2012), GBD 2010: design, definitions, and metrics, Lancet 380, 2063-2066"
     ),
 )  # fmt: skip
+
+REFERENCES: dict[str, RemainingYears] = {"gbd2010": GBD_2010}

@@ -181,6 +181,24 @@ class Keys:
         )
         return CauseChoice(*values)
 
+    def collection(self, key: str) -> str:
+        """The code of another collection; empty where the address gives none."""
+        return self.code(key, found) if (found := self.one(key)) else ""
+
+    def edition(self, key: str) -> int:
+        """The number of another edition; 0 where the address gives none."""
+        text = self.one(key)
+        if text and not (text.isascii() and text.isdecimal() and len(text) < 10 and int(text)):
+            raise BadValue(
+                _(
+                    "The key “{key}” has the value “{text}”; it takes the number of an edition,"
+                    " for example {key}=1.",
+                    key=key,
+                    text=text,
+                )
+            )
+        return int(text or 0)
+
     def figures(self) -> str:
         return self.choice("figures", self.one("figures", FIGURES[0]), FIGURES)
 

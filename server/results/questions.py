@@ -10,7 +10,11 @@ from typing import ClassVar, Protocol, Self
 from urllib.parse import urlencode
 
 from engine.panel import SEXES
+from engine.settings import find as find_settings
+from engine.standards.remaining_years import REFERENCES
+from server.results.causes import CauseChoice
 from server.results.keys import (
+    CAUSE_KEYS,
     CODE,
     DEFAULT_INDICATOR,
     DEFAULT_SETTINGS,
@@ -24,11 +28,14 @@ from server.results.keys import (
 )
 from server.sentences.text import _
 
+OVERLAPS = ("shared", "rest")  # the first is what an address without the key means
+
 __all__ = [
     "CODE",
     "DEFAULT_INDICATOR",
     "DEFAULT_SETTINGS",
     "FIGURES",
+    "OVERLAPS",
     "BadAddress",
     "BadValue",
     "ComparisonQuestion",
@@ -95,39 +102,67 @@ class CurvesQuestion(PopulationYearQuestion):
 
 @dataclass(frozen=True, slots=True)
 class ComparisonQuestion:
-    """What lies between these two? The difference is this less that."""
+    """What lies between these two? The difference is this less that.
+
+    That stands in the same edition, in another one of its own or of another collection, or is a
+    printed table. `overlap`: where the one lies in the other, it is set against the whole, deaths
+    in both counted once, or against the rest of it.
+    """
 
     view: ClassVar[str] = "comparison"
 
     this: PopulationYear
-    that: PopulationYear
+    that: PopulationYear  # this itself where a printed table takes its place
     of: str = DEFAULT_INDICATOR
     figures: str = "released"
     settings: str = DEFAULT_SETTINGS
+    overlap: str = OVERLAPS[0]
+    that_collection: str = ""  # code; empty: the same
+    that_edition: int = 0  # number; 0: the same, or the newest one that stands elsewhere
+    standard: str = ""  # key of the printed table; empty: none
+    causes: CauseChoice | None = None  # how deaths by cause are shown; None: not spelled
 
     @classmethod
     def parse(cls, items: Items) -> Self:
-        keys = Keys(items, populations=("this", "that"), once=("of", "figures", "settings"))
+        once = ("that_collection", "that_edition", "standard", "of", "overlap", *CAUSE_KEYS)
+        keys = Keys(items, populations=("this", "that"), once=(*once, "figures", "settings"))
+        this = keys.population("this")
+        standard = keys.choice("standard", keys.one("standard"), ("", *REFERENCES))
         return cls(
-            keys.population("this"),
-            keys.population("that"),
+            this,
+            this if standard else keys.population("that"),
             keys.compared(),
             keys.figures(),
             keys.settings(),
-        )
+            keys.choice("overlap", keys.one("overlap", OVERLAPS[0]), OVERLAPS),
+            "" if standard else keys.collection("that_collection"),
+            0 if standard else keys.edition("that_edition"),
+            standard,
+            keys.causes(),
+        ).simplified()
+
+    def simplified(self) -> Self:
+        """Without a choice that can make no difference: there is a rest of an area only beside its
+        own sex in the same years."""
+        own = not (self.standard or self.that_collection or self.that_edition)
+        years = find_settings(self.settings).years
+        near = abs(int(self.this.period) - int(self.that.period)) < years
+        one_in_other = self.this.area != self.that.area and self.this.sex == self.that.sex
+        return self if own and near and one_in_other else replace(self, overlap=OVERLAPS[0])
 
     def canonical(self) -> str:
-        return urlencode(
-            [
-                ("this", self.this.code),
-                ("that", self.that.code),
-                ("of", self.of),
-                ("figures", self.figures),
-                ("settings", self.settings),
-            ]
-        )
+        pairs = [("this", self.this.code)]
+        pairs += [("that", self.that.code)] if not self.standard else []
+        pairs += [("that_collection", self.that_collection)] if self.that_collection else []
+        pairs += [("that_edition", str(self.that_edition))] if self.that_edition else []
+        pairs += [("standard", self.standard)] if self.standard else []
+        pairs += [("of", self.of)]
+        pairs += [("overlap", self.overlap)] if self.overlap != OVERLAPS[0] else []
+        pairs += self.causes.pairs if self.causes else []
+        return urlencode([*pairs, ("figures", self.figures), ("settings", self.settings)])
 
     def exchanged(self) -> Self:
+        """The same from the other side, where both stand in one edition."""
         return replace(self, this=self.that, that=self.this)
 
 
