@@ -1,4 +1,4 @@
-"""The small tables of an upload read and checked: what becomes of areas, and breaks."""
+"""The small tables of an upload read and checked: what becomes of areas, breaks, a cause list."""
 
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
@@ -6,6 +6,8 @@ from typing import Protocol
 
 from engine.ages import AgeGrid
 from server.intake import break_rows, successions
+from server.intake.causes import own
+from server.intake.causes.placing import CauseList, own_list
 from server.intake.checks import breaks as break_checks
 from server.intake.checks import columns, files, lists, moved_counts
 from server.intake.checks import successions as succession_checks
@@ -57,6 +59,12 @@ class Tables:
         return frozenset(line["code"] for line in lines)
 
 
+def own_causes(tables: Tables) -> CauseList | None:
+    """The cause list that was handed in, as far as it can be read."""
+    found = (own.read_lines(table) for table in tables.of if table.role == "causes")
+    return next((own_list(tuple(cause for _, cause in lines)) for lines in found), None)
+
+
 def tables_of(handed: Sequence[File]) -> Tables:
     tables, problems, unread = [], [], 0
     for file in handed:
@@ -90,6 +98,8 @@ def told(
             problems += listed.of_areas(table, rows)
             said = successions.successions(rows)
             sound += len(rows)
+        elif table.role == "causes":
+            sound += len(own.read_lines(table))
         else:
             numbered = break_rows.read_lines(table)
             problems += listed.of_breaks(table, numbered)

@@ -60,6 +60,8 @@ class Pool:
     order: Ints  # [cell], where each stands when the blocks are laid one after another
     start: Ints  # [cell], age
     units: Ints  # [cell], millionths
+    beside: Ints | None = None  # of one cause: those of all causes, where its own do not tell
+    only: int = -1  # of one cause: the sex it befalls alone
 
     @classmethod
     def of(cls, blocks: Sequence[Block]) -> "Pool":

@@ -1,4 +1,4 @@
-"""Small tables of an upload that hold no counts: what becomes of areas, and breaks.
+"""Small tables of an upload that hold no counts: what becomes of areas, breaks, a cause list.
 
 Their columns are known by their headings alone; nothing is asked about them.
 """
@@ -12,6 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from server.intake.layout import Layout
+from server.intake.recognising.names import named
 
 MOST_ROWS = 5_000
 _NUMBER = re.compile(r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?")
@@ -40,8 +41,18 @@ HEADINGS: dict[str, dict[str, str]] = {
         "ratio": "ratio|comparability ratio",
         "ratio_error": "ratio error|standard error|standard error of the ratio",
     },
+    "causes": {
+        "code": "code|cause code|code of the cause",
+        "name": "name|cause|label|cause of death|title",
+        "parent": "part of|parent|group|part of code",
+        "codes": "codes|ranges|icd codes|icd 10|icd 10 codes|icd 9|icd 9 codes|range",
+        "kind": "kind|kind of cause",
+        "care": "care",
+        "sex": "sex|only sex",
+    },
 }
-NEEDED = {"areas": ("code", "becomes"), "breaks": ("year", "kind")}
+NEEDED = {"areas": ("code", "becomes"), "breaks": ("year", "kind"), "causes": ("code", "name")}
+_COUNTED = ("year", "age", "deaths", "population", "births", "rate")
 
 
 @dataclass(frozen=True, slots=True)
@@ -118,6 +129,21 @@ def field_of(heading: str, role: str) -> str:
     for field, words in HEADINGS[role].items():
         if plain in words.split("|"):
             return field
+    return ""
+
+
+def role_of(headings: Iterable[str]) -> str:
+    """The small table that has these headings; empty where none has. One that tells codes and
+    names is a list of causes where it counts nothing.
+
+    >>> role_of(["code", "name", "codes"]), role_of(["code", "name", "deaths"])
+    ('causes', '')
+    """
+    said = list(headings)
+    for role, needed in NEEDED.items():
+        if set(needed) <= {field_of(heading, role) for heading in said}:
+            counts = role == "causes" and any(named(heading, _COUNTED) for heading in said)
+            return "" if counts else role
     return ""
 
 

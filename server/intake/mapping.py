@@ -19,7 +19,9 @@ COLUMNS = (
     "neonatal_deaths",
     "rate",
     "status",
+    "cause",
 )
+OF_CAUSES = ("counts", "deaths")  # roles whose deaths may be by cause
 
 # which numbers a file of each role must carry
 ROLES: dict[str, tuple[str, ...]] = {
@@ -34,7 +36,7 @@ BESIDE: dict[str, tuple[str, ...]] = {
     "births": ("stillbirths", "neonatal_deaths"),
     "rates": ("population",),
 }
-LISTS = ("areas", "breaks")  # roles of small tables that hold no counts
+LISTS = ("areas", "breaks", "causes")  # roles of small tables that hold no counts
 EVERY_ROLE = (*ROLES, *LISTS)
 WITHOUT_AGE = (*ROLES["births"], *BESIDE["births"])  # counts, not columns, that no age goes with
 
@@ -86,6 +88,7 @@ class Mapping:
     neonatal_deaths: str = ""  # deaths before 28 days, of those counted at age 0
     rate: str = ""  # death rates or probabilities of dying
     status: str = ""  # column that says provisional or final
+    cause: str = ""  # column of causes of death: codes, or codes and labels of the list
 
     # what stands in no column
     only_area: str = ""  # code of the one area of a file without an area column
@@ -103,6 +106,7 @@ class Mapping:
     units: tuple[tuple[str, str], ...] = ()
     # of sex, age and area: what is done with counts that do not state it, "spread" or "left_out"
     unstated: tuple[tuple[str, str], ...] = ()
+    cause_list: str = ""  # one of CAUSE_LISTS, where the deaths are by cause
     most_unstated: int = 5  # per cent of a year's counts; above, spreading is refused
     form: Form = Form()
 

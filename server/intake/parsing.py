@@ -3,28 +3,25 @@
 from collections import defaultdict
 from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, replace
-from itertools import repeat
 
 import numpy as np
 
-from engine.panel import SEXES
-from server.intake.areas_over_time import tables_of, told
+from server.intake.areas_over_time import own_causes, tables_of, told
+from server.intake.causes.placing import CauseList, causes_of
+from server.intake.causes.spreading import by_leaves
 from server.intake.cells import (
     AREA_UNSTATED,
-    TOTAL,
     UNREADABLE,
-    UNSTATED,
-    Cells,
-    Ints,
     cells,
     codes_of,
     names_of,
     parts_of,
     whole_code,
 )
-from server.intake.checks import OF_LEDGER, ages, columns, fields, files, totals, unstated
+from server.intake.checks import OF_LEDGER, columns, files, totals, unstated
 from server.intake.checks import areas as area_checks
 from server.intake.checks import worked_out as derived
+from server.intake.file_rows import FileRows, sorted_out
 from server.intake.forms import across
 from server.intake.forms.addresses import placed
 from server.intake.january import averaged
@@ -33,18 +30,19 @@ from server.intake.ledger import Ledger
 from server.intake.mapping import EVERY_ROLE, JANUARY, LISTS, ROLES, Mapping
 from server.intake.problems import Problem, errors_of
 from server.intake.rates import WorkedOut, worked_out
-from server.intake.schedules import RATE, Aside, Block, asides, blocks, groups, ordered
+from server.intake.schedules import RATE
 from server.intake.sharing import Unstated, settle
 from server.intake.sheets import Sheet, load
 from server.intake.standing import NOTHING_STANDS, Standing
 from server.intake.successions import NOTHING, Successions
-from server.store.records import Area, Break, Key, Vector
+from server.intake.vectors import vectors, vectors_by_cause
+from server.store.records import Area, Break, Cause, Key, Vector
 
 # what it is at, texts of the catalogue
 READING, CHECKING = "reading the rows", "checking the counts"
 Reached = Callable[[int, str], object]
 DYING = ("deaths", RATE)
-READER = "reader-3"  # changes whenever the same bytes and mapping would give other schedules
+READER = "reader-4"  # changes whenever the same bytes and mapping would give other schedules
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,25 +69,11 @@ class Parsed:
     breaks: tuple[Break, ...] = ()
     rebased: tuple[str, ...] = ()  # years held that get a new population under deaths that stand
     unstated: tuple[Unstated, ...] = ()  # what became of counts that do not state all
+    causes: tuple[Cause, ...] = ()  # the cause list, where deaths are by cause or a list came along
 
     @property
     def errors(self) -> tuple[Problem, ...]:
         return errors_of(self.problems)
-
-
-@dataclass(frozen=True, slots=True)
-class _Sorted:
-    """One file as far as it could be read."""
-
-    problems: list[Problem]
-    rows: int
-    sound: int
-    blocks: list[Block]
-    spoiled: Ints  # places with errors
-    unplaced: bool
-    age_totals: list[Aside]
-    ageless: list[Aside]  # counts of unknown age
-    grouped: list[Aside]  # counts by age whose area or sex is not known
 
 
 def parse(
@@ -114,21 +98,34 @@ def parse(
     # codes of which it is said what becomes of them are not missed
     left = standing.without(lists.old_codes) if standing else None
     counted = [file for file in handed if file.role not in LISTS]
-    counts = _counts(counted, left, warn=warn, reached=reached)
+    own = own_causes(lists)
+    counts = _counts(counted, left, own, warn=warn, reached=reached)
     grids = {key: cell.grid for key, cell in counts.cells.items()}
     said = told(lists, counts.areas, grids, standing)
     return replace(
         counts,
         successions=said.successions,
         breaks=said.breaks,
+        causes=_causes(counted, own),
         problems=(*counts.problems, *said.problems),
         row_count=counts.row_count + said.rows,
         sound_count=counts.sound_count + said.sound,
     )
 
 
+def _causes(counted: Sequence[Handed], own: CauseList | None) -> tuple[Cause, ...]:
+    """The list that the files go by, else the one that was handed in."""
+    asked = (causes_of(file.role, file.mapping, own) for file in counted)
+    return next((found.causes for found in asked if found), own.causes if own else ())
+
+
 def _counts(
-    handed: Sequence[Handed], standing: Standing | None, *, warn: bool, reached: Reached
+    handed: Sequence[Handed],
+    standing: Standing | None,
+    own: CauseList | None,
+    *,
+    warn: bool,
+    reached: Reached,
 ) -> Parsed:
     """The files of counts, as `parse`."""
     problems: list[Problem] = []
@@ -140,7 +137,9 @@ def _counts(
         laid = layout(file.content, file.name, file.mapping.form)
         found = files.problems_of(laid)
         if not errors_of(found):
-            found += columns.problems_of(columns.Mapped(laid, file.role, file.mapping))
+            found += columns.problems_of(
+                columns.Mapped(laid, file.role, file.mapping, own is not None)
+            )
         problems += found
         if errors_of(found):
             unread += laid.row_count
@@ -150,7 +149,10 @@ def _counts(
                 wide[laid.name] = spread
     codes, areas, clashes = _areas(sheets, handed)
     problems += clashes
-    cut = [_sorted(cells(sheet, codes)) for sheet in sheets]
+    cut = [
+        sorted_out(cells(sheet, codes), causes_of(sheet.role, sheet.mapping, own))
+        for sheet in sheets
+    ]
     died = _years_of_deaths(cut)
     done = [_dated(part, sheet.mapping, died) for part, sheet in zip(cut, sheets, strict=True)]
     problems += [problem for part in done for problem in part.problems]
@@ -168,7 +170,8 @@ def _counts(
         standing=standing,
     )
     reached(len(handed), CHECKING)
-    settled = settle(ledger)
+    by_cause = [part.by_cause for part in done if part.by_cause is not None]
+    settled, spread_out = by_leaves(settle(ledger), by_cause)
     problems += [problem for check in totals.CHECKS for problem in check.problems(ledger)]
     problems += [problem for check in unstated.CHECKS for problem in check.problems(settled)]
     made = _deaths_of_rates(settled.ledger, done, handed)
@@ -176,12 +179,13 @@ def _counts(
     for check in OF_LEDGER:
         if warn or check.severity == "error":
             problems += check.problems(made.ledger)
+    kept = made.ledger.without_totals()
     return Parsed(
-        cells=_vectors(made.ledger.without_totals()),
+        cells=vectors(kept) | vectors_by_cause(kept, spread_out),
         areas=areas,
         problems=tuple(placed(problem, wide) for problem in problems),
-        row_count=unread + sum(part.rows for part in done),
-        sound_count=sum(part.sound for part in done),
+        row_count=unread + sum(len(part.sound_rows) for part in done),
+        sound_count=sum(int(part.sound_rows.sum()) for part in done),
         whole=_whole(handed),
         unstated=settled.account,
     )
@@ -225,46 +229,12 @@ def _areas(
     return tuple(sorted(found)), areas, problems if sheets else []
 
 
-def _sorted(read: Cells) -> _Sorted:
-    """Check a sheet row by row and age by age, and cut what is sound into vectors."""
-    sheet = read.sheet
-    problems: list[Problem] = []
-    labelled = np.ones(len(sheet), bool)  # every label of the row could be read
-    sound = labelled.copy()
-    for field_check in fields.CHECKS:
-        for marks in field_check.mark(read):
-            problems += field_check.problems(marks, sheet.row, sheet.name)
-            sound &= ~marks.failing
-            if field_check.key not in fields.OF_NUMBERS:
-                labelled &= ~marks.failing
-    rows = ordered(read, labelled)
-    failing = np.zeros(len(rows.take), bool)
-    for age_check in ages.CHECKS:
-        for marks in age_check.mark(rows):
-            problems += age_check.problems(marks, rows.row, sheet.name)
-            failing |= marks.failing
-    sound[rows.take[failing]] = False
-    torn = rows.place[rows.parted | rows.parted_before]  # rows of theirs may be the unplaced ones
-    spoiled = np.unique(np.concatenate([read.place[read.placed & ~sound], torn]))
-    return _Sorted(
-        problems=problems,
-        rows=len(sheet),
-        sound=int(sound.sum()),
-        blocks=list(blocks(rows, spoiled)),
-        spoiled=spoiled,
-        unplaced=not read.placed.all(),
-        age_totals=list(asides(read, read.placed & sound & (read.start == TOTAL))),
-        ageless=list(asides(read, read.placed & sound & (read.start == UNSTATED), None)),
-        grouped=list(groups(rows, spoiled)),
-    )
-
-
-def _years_of_deaths(parts: Iterable[_Sorted]) -> set[str]:
+def _years_of_deaths(parts: Iterable[FileRows]) -> set[str]:
     of_deaths = (block for part in parts for block in part.blocks if block.measure in DYING)
     return {str(year) for block in of_deaths for year in np.unique(parts_of(block.place)[2])}
 
 
-def _dated(part: _Sorted, mapping: Mapping, died: set[str]) -> _Sorted:
+def _dated(part: FileRows, mapping: Mapping, died: set[str]) -> FileRows:
     """With people of 1 January made people at risk, where the mapping says that they are that.
     That a 1 January has no next one is told where deaths of its year are handed in, or none are."""
     if mapping.population_is != JANUARY:
@@ -286,7 +256,7 @@ def _dated(part: _Sorted, mapping: Mapping, died: set[str]) -> _Sorted:
 
 
 def _deaths_of_rates(
-    ledger: Ledger, done: Sequence[_Sorted], handed: Sequence[Handed]
+    ledger: Ledger, done: Sequence[FileRows], handed: Sequence[Handed]
 ) -> WorkedOut:
     rates = [block for part in done for block in part.blocks if block.measure == RATE]
     unstated_ones = (aside for part in done for aside in (*part.ageless, *part.grouped))
@@ -296,7 +266,7 @@ def _deaths_of_rates(
 
 
 def _ledger(
-    done: Sequence[_Sorted],
+    done: Sequence[FileRows],
     codes: tuple[str, ...],
     areas: Sequence[Area],
     *,
@@ -318,26 +288,3 @@ def _ledger(
         grouped=tuple(one for part in done for one in part.grouped if one.measure != RATE),
         standing=standing,
     )
-
-
-def _vectors(ledger: Ledger) -> dict[Key, Vector]:
-    """The schedules as the store keeps them, in the order of their keys within each measure."""
-    found: dict[Key, Vector] = {}
-    for block in (one for all_ in ledger.on_common_grids() for one in all_.with_counted()):
-        area, sex, year = parts_of(block.place)
-        keys = map(
-            Key,
-            np.array(ledger.codes, object)[area],
-            np.array(SEXES, object)[sex],
-            year.astype(str).tolist(),
-            repeat(block.measure),
-        )
-        statuses = np.array(["final", "provisional"], object)[block.provisional.astype(int)]
-        found.update(
-            zip(
-                keys,
-                map(Vector, statuses, repeat(block.grid), block.values, repeat(block.estimated)),
-                strict=True,
-            )
-        )
-    return found

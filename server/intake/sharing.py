@@ -79,11 +79,14 @@ class Settled:
     account: tuple[Unstated, ...] = ()  # by measure and year
 
 
-def settle(ledger: Ledger) -> Settled:
+def settle(ledger: Ledger, beside: Ledger | None = None, only: int = -1) -> Settled:
     """Share out, or leave out, what does not state its sex, age or area. Sums are kept to the last
-    millionth; where everything is stated, nothing changes."""
-    bare = any(not ledger.states(total.place).all() for total in ledger.age_totals)
-    if not (ledger.ageless or ledger.grouped or bare):
+    millionth; where everything is stated, nothing changes.
+
+    Counts of one cause come with those of all causes `beside`, by which they are shared where the
+    cause was stated nowhere, first among the sex that it befalls `only`.
+    """
+    if is_settled(ledger):
         return Settled(ledger, ledger)
     blocks: list[Block] = []
     found: list[Part] = []
@@ -93,6 +96,8 @@ def settle(ledger: Ledger) -> Settled:
     measures = (*(one.measure for one in ledger.blocks), *(one.measure for one in asides))
     for measure in dict.fromkeys(measures):
         pool = Pool.of(ledger.of(measure))
+        if beside is not None:
+            pool = replace(pool, beside=Pool.of(beside.of(measure)).units, only=only)
         parts = unstated(ledger, measure, pool)
         made = _shared_out(ledger, pool, parts)
         found += parts
@@ -102,6 +107,12 @@ def settle(ledger: Ledger) -> Settled:
     totals = tuple(total.pick(ledger.states(total.place)) for total in ledger.age_totals)
     after = replace(ledger, blocks=tuple(blocks), ageless=(), grouped=(), age_totals=totals)
     return Settled(after, ledger, tuple(found), tuple(lost), tuple(account))
+
+
+def is_settled(ledger: Ledger) -> bool:
+    """Whether all counts state their sex, age and area."""
+    bare = any(not ledger.states(total.place).all() for total in ledger.age_totals)
+    return not (ledger.ageless or ledger.grouped or bare)
 
 
 def unstated(ledger: Ledger, measure: str, pool: Pool) -> list[Part]:
@@ -196,7 +207,20 @@ def _weights(pool: Pool, part: Part, to: Ints, cells: Ints, which: Ints) -> Iter
     """By what cells of some lines share, and by what where those before have none of it."""
     if not len(to):
         return
-    own, start = pool.units[cells], pool.start[cells]
+    yield from _by(pool, pool.units, part, to, cells, which)
+    if pool.beside is None:
+        return
+    befallen = np.ones(len(to), bool)
+    if pool.only >= 0:
+        befallen = parts_of(pool.place[to])[1] == pool.only
+    for may in (befallen, np.ones(len(to), bool)):
+        for weights in _by(pool, pool.beside, part, to, cells, which):
+            yield np.where(may[which], weights, 0)
+
+
+def _by(pool: Pool, units: Ints, part: Part, to: Ints, cells: Ints, which: Ints) -> Iterator[Ints]:
+    """The counts of some cells at the ages in question, then those of their lines at all ages."""
+    own, start = units[cells], pool.start[cells]
     if part.source.ages is None:
         yield np.where((start == 0) & pool.infants(to)[which], 0, own)
         yield own
@@ -207,7 +231,7 @@ def _weights(pool: Pool, part: Part, to: Ints, cells: Ints, which: Ints) -> Iter
     high = starts[np.searchsorted(starts, min(last, OLDEST), side="right")]
     ages = (start >= low) & (start < high)
     yield np.where(ages, own, 0)
-    yield np.where(ages, pool.sums(pool.units)[to][which], 0)
+    yield np.where(ages, pool.sums(units)[to][which], 0)
 
 
 def _lines_of(ledger: Ledger, pool: Pool, part: Part) -> tuple[Ints, Ints]:

@@ -16,7 +16,7 @@ from server.intake.forms.addresses import addresses
 from server.intake.forms.numbers import reader
 from server.intake.forms.units import multiplier_of
 from server.intake.layout import Layout
-from server.intake.mapping import COLUMNS, NUMBERS, Form, Mapping, numbers_of
+from server.intake.mapping import COLUMNS, NUMBERS, OF_CAUSES, Form, Mapping, numbers_of
 
 T = TypeVar("T")
 
@@ -71,6 +71,8 @@ def load(file: Layout, mapping: Mapping, role: str) -> Sheet:
     """Read the mapped columns of a file that passed the checks of files and of columns."""
     fields = [field for field in COLUMNS if mapping.column(field)]
     fields = [field for field in fields if field not in NUMBERS or field in numbers_of(role)]
+    if role not in OF_CAUSES and "cause" in fields:
+        fields.remove("cause")
     wide = spread(mapping.form)
     column = {field: file.columns.index(mapping.column(field)) for field in fields}
     texts = {column[field] for field in fields if field not in NUMBERS}

@@ -53,6 +53,27 @@ NOT_STATED = (
 NOT_STATED_SIGNS = "ns|n.s.|n. s.|na|n.a.|n/a|nd|n.d.|n/d|nk|n/k|o.a.|o. a.|k.a.|k. a.|..|...|?|??"
 AGE_NOT_STATED = "999|9999|999.0|9999.0"
 
+# the deaths of all causes, and deaths of which the cause is not known
+ALL_CAUSES = (
+    "all causes|all causes of death|total all causes|all deaths|total deaths|toutes causes|"
+    "toutes les causes|toutes causes confondues|ensemble des causes|alle todesursachen|"
+    "alle ursachen|todesursachen insgesamt|todas las causas|todas las causas de muerte|"
+    "total de causas|todas as causas|todas as causas de morte|tutte le cause|"
+    "tutte le cause di morte|alle doodsoorzaken|totaal alle doodsoorzaken|totaal doodsoorzaken|"
+    "alle dodsarsager|dodsarsager i alt|alle dodsarsaker|totalt alle dodsarsaker|"
+    "alla dodsorsaker|samtliga dodsorsaker|wszystkie przyczyny|wszystkie przyczyny zgonow|"
+    "przyczyny ogolem"
+)
+CAUSE_NOT_STATED = (
+    "cause not stated|cause unknown|unknown cause|cause not known|cause not specified|"
+    "cause non precisee|cause inconnue|cause non declaree|ursache unbekannt|"
+    "todesursache unbekannt|ohne angabe der todesursache|causa no especificada|"
+    "causa desconocida|causa nao especificada|causa desconhecida|causa ignorada|"
+    "causa non specificata|causa sconosciuta|doodsoorzaak onbekend|ukendt dodsarsag|"
+    "uoplyst dodsarsag|ukjent dodsarsak|okand dodsorsak|nieznana przyczyna|"
+    "przyczyna nieznana"
+)
+
 STATUSES = {
     "final": "final|finals|f|definitive|definitif|definitifs|endgultig|endgueltig|definitivo|"
     "definitivos|definitivas|definitief|endelig|endelige|slutlig|slutliga|ostateczne|ostateczny",

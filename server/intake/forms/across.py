@@ -7,7 +7,7 @@ from server.intake.forms.found import Found
 from server.intake.mapping import NUMBERS, Form, numbers_of
 from server.intake.problems import Fault
 
-FIELDS = ("age", "sex", "year", "number")
+FIELDS = ("age", "sex", "year", "cause", "number")
 
 
 @dataclass(frozen=True, slots=True)

@@ -3,7 +3,7 @@
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
-from server.intake.lists import NEEDED, field_of
+from server.intake.lists import role_of
 from server.intake.mapping import NUMBERS, Form
 from server.intake.reading import Reading, proposed
 from server.intake.recognising.across import number_of
@@ -67,9 +67,8 @@ def sorted_out(files: Sequence[tuple[str, bytes]], taken: Iterable[str] = ()) ->
 
 def kind(reading: Reading) -> Kind:
     """By the columns, else by the words around the table."""
-    for role, needed in NEEDED.items():
-        if set(needed) <= {field_of(column, role) for column in reading.columns}:
-            return Kind(role, COLUMNS_SAY)
+    if role := role_of(reading.columns):
+        return Kind(role, COLUMNS_SAY)
     if role := _role(_counted(reading)):
         return Kind(role, COLUMNS_SAY)
     titles = (" ".join(row) for row in reversed(reading.top))

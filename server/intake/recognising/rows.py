@@ -5,7 +5,7 @@ from dataclasses import dataclass
 from statistics import median
 
 from server.intake.labels import read_year
-from server.intake.lists import NEEDED, field_of
+from server.intake.lists import role_of
 from server.intake.mapping import COLUMNS
 from server.intake.recognising.across import meanings
 from server.intake.recognising.marks import is_number
@@ -40,18 +40,10 @@ def heading(rows: Rows) -> Heading:
         at = next((at for at in range(min(len(cells), DEEPEST)) if _heads(cells, at)), None)
     if at is None:
         return Heading(1, 1, sure=False)
-    if _of_small_table(cells[at]):
+    if role_of(filter(None, cells[at])):  # names and years below could go on with the headings
         return Heading(at + 1, 1, sure=True)
     first, last = _upwards(cells, at), _downwards(cells, at)
     return Heading(first + 1, last - first + 1, sure=_sure(cells, at))
-
-
-def _of_small_table(row: tuple[str, ...]) -> bool:
-    """Whether a row heads a table of area codes or of breaks, whose rows hold names and years that
-    could as well go on with the headings."""
-    return any(
-        set(needed) <= {field_of(cell, role) for cell in row} for role, needed in NEEDED.items()
-    )
 
 
 def _most_usual(cells: Rows) -> int | None:
