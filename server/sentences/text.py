@@ -45,10 +45,15 @@ def _(text: str, /, **values: object) -> str:
     """The text in the language in force, with its {names} filled in."""
     code = _LANGUAGE.get()
     if code == "pseudo":
-        text = f"⟦{text}⟧"
+        text = bracketed(text)
     elif code in OTHERS:
         text = translated(code, text)
     return text.format(**values) if values else text
+
+
+def bracketed(text: str) -> str:
+    """In the made-up language."""
+    return f"⟦{text}⟧"
 
 
 def n_(one: str, many: str, count: int, /, **values: object) -> str:

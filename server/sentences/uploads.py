@@ -192,7 +192,7 @@ def checking(state: str, message: str) -> Sentence:
         "running": _("The files are being read: {stage}.", stage=_(message))
         if message
         else _("The files are being read."),
-        "cancelled": _("The reading was stopped. Nothing was changed."),
+        "cancelled": _("The reading was stopped."),
         "failed": _("The files could not be read to the end. {why}", why=_(message)),
         "done": _("The files have been read and checked."),
     }
@@ -206,7 +206,7 @@ def committing(state: str, message: str) -> Sentence:
         "running": _("The edition is being made: {stage}.", stage=_(message))
         if message
         else _("The edition is being made."),
-        "cancelled": _("The making of the edition was stopped. Nothing was changed."),
+        "cancelled": _("The making of the edition was stopped."),
         "failed": _("The edition could not be made. {why}", why=_(message)),
         "done": _("The edition has been made."),
     }
@@ -214,9 +214,13 @@ def committing(state: str, message: str) -> Sentence:
 
 
 def committing_further(state: str) -> tuple[Sentence, ...]:
-    """What may be done meanwhile."""
+    """What may be done meanwhile; or, of an upload that was looked at and is no edition, that."""
     if state not in ("queued", "running"):
-        return ()
+        return (
+            phrase(
+                _("No edition has been made of this upload so far. It can be committed once more.")
+            ),
+        )
     return (
         phrase(
             _(
@@ -227,10 +231,16 @@ def committing_further(state: str) -> tuple[Sentence, ...]:
     )
 
 
-def checking_further(state: str) -> tuple[Sentence, ...]:
-    """What may be done meanwhile."""
+def checking_further(state: str, *, reported: bool) -> tuple[Sentence, ...]:
+    """What may be done meanwhile; or what is known of the report afterwards."""
     if state not in ("queued", "running"):
-        return ()
+        return (
+            phrase(
+                _("A report of what the checks found stands under the upload.")
+                if reported
+                else _("No report of these files has been written so far.")
+            ),
+        )
     return (
         phrase(
             _(

@@ -1,4 +1,4 @@
-"""All texts of the catalogue, and which of them a language lacks: python -m tests.house.catalogue es
+"""All texts of the catalogue; python -m tests.house.catalogue es: those that a language lacks.
 
 Texts stand in calls of `_` and `n_`, in templates, in what the store and the routes refuse, and in
 the registries: indicators, settings, checks, cause lists.
@@ -21,13 +21,26 @@ from server.sentences.languages import texts
 from server.sentences.names import brief
 
 ROOMS = ("server", "engine")
-CALLS = {"_": 1, "n_": 2}  # how many of their first arguments are texts
+CALLS = {"_": 1, "n_": 2, "translate": 1}  # how many of their first arguments are texts
 # fields of registries that are read by people; others are keys, codes and calculations. A source
 # stands as it was published
-READ = frozenset(
-    "label question definition formula why_not_smooth name sentence standard title about"
-    " meaning why remedy found expected".split()
-)
+READ = {
+    "label",
+    "question",
+    "definition",
+    "formula",
+    "why_not_smooth",
+    "name",
+    "sentence",
+    "standard",
+    "title",
+    "about",
+    "meaning",
+    "why",
+    "remedy",
+    "found",
+    "expected",
+}
 
 
 def everywhere() -> dict[str, str]:
