@@ -7,6 +7,7 @@ import numpy as np
 from engine.ages import Array
 from engine.blocks import blocks
 from engine.chain import Chain, Reading, Tally, run
+from engine.roots import false_position
 from engine.tables import Partials, pull
 
 ONE_PERCENT = 0.01
@@ -14,7 +15,6 @@ ONE_MONTH = 1 / 12  # of a year
 LEAST_SHARE = 1e-6  # of the deaths at an age, where the number has no value without any
 CLOSE = 1e-11  # of the stated gain, and
 ROUNDING = 1e-14  # of the number itself
-STEPS = 60
 
 
 def by_survival(indicator: Reading, chain: Chain) -> Array:
@@ -147,21 +147,16 @@ class _Lowered:
         no share does."""
         low = np.where(np.isnan(at_none), LEAST_SHARE, 0.0)
         above = np.where(np.isnan(at_none), self.part(low), at_none) - 1
-        high, below = np.ones_like(low), np.full_like(low, -1.0)
-        found, searching = np.full_like(low, np.nan), above >= 0
-        close = CLOSE + np.abs(ROUNDING * self.indicator.value(self.chain) / self.gain)
-        for _ in range(STEPS):
-            if not searching.any():
-                break
-            share = np.where(searching, (low * below - high * above) / (below - above), 1.0)
-            left = self.part(share) - 1
-            met = searching & (np.abs(left) < close)
-            found, searching = np.where(met, share, found), searching & ~met
-            beyond = left > 0
-            # the end that stays a second time counts half, or it would never move
-            low, high = np.where(beyond, share, low), np.where(beyond, high, share)
-            above, below = np.where(beyond, left, above / 2), np.where(beyond, below / 2, left)
-        return found
+        with np.errstate(all="ignore"):
+            close = CLOSE + np.abs(ROUNDING * self.indicator.value(self.chain) / self.gain)
+        return false_position(
+            lambda share: self.part(share) - 1,
+            low,
+            np.ones_like(low),
+            at_low=np.where(above >= 0, above, np.nan),
+            at_high=np.full_like(low, -1.0),
+            close=close,
+        )
 
 
 def _of_table(indicator: Reading, chain: Chain) -> Partials:
