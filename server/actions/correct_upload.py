@@ -19,8 +19,8 @@ def correct_upload(
     now: dt.datetime,
     limit: int = LARGEST,
 ) -> Upload:
-    """The draft it corrects is thrown away, so that the bytes of its file are gone from the
-    database's files. All or nothing; nothing is checked yet.
+    """The draft it corrects is thrown away; what the database's files hold of it then, `scrub`
+    says. All or nothing; nothing is checked yet.
 
     Raises: NotAllowed; Missing for the upload or the file's role; FileTooLarge; Refused where the
     upload has become an edition.

@@ -35,10 +35,12 @@ def erase_bytes(
     upload = uploads.find(session, upload_id)
     if upload.edition is None:
         raise Refused(
-            "Upload {upload} is a draft. Discard it: its files go with it.", upload=upload_id
+            "Upload {upload} is a draft. Discard it, and say that it holds personal data: its "
+            "files go with it.",
+            upload=upload_id,
         )
     if any(file.erased is None for file in upload.files):
         with transaction(session):
             uploads.empty(session, upload_id, by=by.name, why=why.strip(), at=now)
-    gone = scrub(session)
+    gone = scrub(session, erased=True)
     return Erased(uploads.find(session, upload_id), gone)

@@ -12,13 +12,13 @@ from server.jobs.executor import Book, Entry, require_kind
 
 WATCHED = 0.1  # seconds between two looks at a job
 
-# closing messages of a job, texts of the catalogue
+# closing messages of a job, texts of the catalogue; what it had written by then, the page looks up
 TOO_LONG = (
     "It took longer than this server allows. Hand in fewer years at a time, or raise "
     "EBBLINE_WORK_SECONDS."
 )
-DIED = "The process that did it ended unexpectedly. Nothing was changed; try once more."
-STOPPED = "The server was stopped while it ran. Nothing was changed; try once more."
+DIED = "The process that did it ended unexpectedly."
+STOPPED = "The server was stopped before it had ended."
 
 
 @dataclass(frozen=True, slots=True)

@@ -24,7 +24,7 @@ class UploadCheckingPage(Page):
     done: int
     total: int
     job: int
-    committing: bool
+    checked: bool  # before this work: the way back is to what was found
 
 
 def build(session: Session, upload_id: int, job: Job) -> UploadCheckingPage:
@@ -42,12 +42,16 @@ def build(session: Session, upload_id: int, job: Job) -> UploadCheckingPage:
             nav="upload",
         ),
         answer=(say.committing if committing else say.checking)(job.state, job.message),
-        lead=(say.committing_further if committing else say.checking_further)(job.state),
+        lead=(
+            say.committing_further(job.state)
+            if committing
+            else say.checking_further(job.state, reported=bool(upload.report))
+        ),
         place=f"/uploads/{upload.id}",
         here=here,
         running=job.state in ("queued", "running"),
         done=job.done,
         total=job.total,
         job=job.id,
-        committing=committing,
+        checked=job.kind != "check",
     )

@@ -189,8 +189,16 @@ def _effect(upload: int, taking: Taking) -> str:
 
 
 @router.post("/uploads/{upload:int}/discard", dependencies=MAY_UPLOAD)
-def discard(session: SessionDep, viewer: ViewerDep, upload: int) -> Response:
-    discard_upload(session, upload_id=upload, by=viewer)
+def discard(session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep) -> Response:
+    personal = text(form, "personal") == "yes"
+    if not discard_upload(session, upload_id=upload, by=viewer, personal=personal) and personal:
+        raise Refusal(
+            409,
+            "Not done",
+            "The draft was discarded, but somebody was reading, so that a copy may stand in the "
+            "database’s log of writes. Erase the bytes of any upload, or discard another draft, "
+            "and it goes with them.",
+        )
     return redirect("/uploads", status=303)
 
 

@@ -63,19 +63,25 @@ def transaction(session: Session) -> Iterator[None]:
     session.commit()
 
 
-def scrub(session: Session) -> bool:
-    """See that what was deleted or emptied is no longer in the database's own files, outside a
-    transaction; whether it is so. On SQLite what is freed is overwritten as it is freed
-    (`secure_delete`), and the log of writes is taken over and emptied, which a reader at work may
-    hold up. On PostgreSQL the table of files is written anew. Backups, archived logs and what a
-    disk keeps of overwritten places are out of reach."""
+def scrub(session: Session, *, erased: bool = False) -> bool:
+    """After rows were deleted, or with `erased` personal data emptied on purpose, see to what the
+    database's own files still hold of them, outside a transaction; whether nothing is left there.
+
+    On SQLite what is freed is overwritten as it is freed (`secure_delete`), and the log of writes
+    is taken over and emptied, which a reader at work may hold up. On PostgreSQL rows that were
+    deleted stay in the files of the table until it is vacuumed and their place is used again, and
+    in the log of writes until its segments are reused; nobody reads them through the database.
+    With `erased` the table of files is written anew (`VACUUM FULL`: every other use of it waits
+    until what is left is written), so that they remain in that log alone. Backups, archived logs
+    and what a disk keeps of overwritten places are out of reach on both."""
     session.rollback()
     engine = session.get_bind()
     assert isinstance(engine, Engine)
     if engine.dialect.name != "sqlite":
-        with engine.connect().execution_options(isolation_level="AUTOCOMMIT") as connection:
-            connection.exec_driver_sql("VACUUM FULL upload_file")
-        return True
+        if erased:
+            with engine.connect().execution_options(isolation_level="AUTOCOMMIT") as connection:
+                connection.exec_driver_sql("VACUUM FULL upload_file")
+        return erased
     bare = (
         engine.raw_connection()
     )  # SQLAlchemy would begin a transaction, in which none can be done

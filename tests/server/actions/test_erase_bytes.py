@@ -4,7 +4,7 @@ from dataclasses import replace
 from pathlib import Path
 
 import pytest
-from sqlalchemy import Engine, text
+from sqlalchemy import Engine, event, text
 from sqlalchemy.orm import Session, sessionmaker
 
 from server.accounts.viewer import LOCAL, NotAllowed, Right, Viewer
@@ -106,6 +106,30 @@ def test_a_draft_thrown_away_leaves_nothing_behind(
         assert not any(b"Ermintrude Overwater" in one.read_bytes() for one in found)
 
 
+@pytest.mark.parametrize(
+    ("way", "anew"),
+    [("discarded", False), ("personal", True), ("corrected", False), ("erased", True)],
+)
+def test_tables_are_written_anew_only_where_personal_data_go(
+    session: Session, engine: Engine, way: str, anew: bool
+) -> None:
+    """On PostgreSQL that keeps all others from the files meanwhile; SQLite never does."""
+    upload = checked_upload(session, counts_csv())
+    said: list[str] = []
+    event.listen(
+        engine, "before_cursor_execute", lambda _conn, _cursor, text, *_rest: said.append(text)
+    )
+    if way == "corrected":
+        file = ("counts", "counts.csv", counts_csv())
+        correct_upload(session, upload_id=upload.id, file=file, by=LOCAL, now=NOON)
+    elif way == "erased":
+        erase(session)
+    else:
+        discard_upload(session, upload_id=upload.id, by=LOCAL, personal=way == "personal")
+    anew &= engine.dialect.name == "postgresql"
+    assert [one for one in said if "VACUUM" in one] == ["VACUUM FULL upload_file"] * anew
+
+
 def test_rebuild_says_what_it_cannot_make_and_what_rests_on_it(session: Session) -> None:
     erase(session)
     first, second, third = rebuild_editions(session, collection="saltmarsh", by=LOCAL)
@@ -137,5 +161,5 @@ def test_what_is_refused(session: Session) -> None:
     with pytest.raises(Refused, match="cannot be erased without a reason"):
         erase(session, why=" ")
     draft = checked_upload(session, counts_csv())
-    with pytest.raises(Refused, match=r"Upload 4 is a draft\. Discard it"):
+    with pytest.raises(Refused, match=r"Upload 4 is a draft\. Discard it, and say"):
         erase(session, draft.id)

@@ -15,6 +15,7 @@ from server.actions.works import works
 from server.app import create_app
 from server.config import Config
 from server.jobs.executor import TOO_LARGE, Tell, run
+from server.jobs.processes import DIED, STOPPED
 from server.routes import uploads
 from server.store import editions, schedules
 from server.store.connect import Session
@@ -87,7 +88,8 @@ def test_it_can_be_stopped(app: FastAPI, client: TestClient, place: str) -> None
     stopped = client.post("/uploads/1/checking/cancel", data={"job": "1"})
     assert (stopped.status_code, stopped.headers["location"]) == (303, place)
     page = client.get(place).text
-    assert "The reading was stopped. Nothing was changed." in page
+    assert "The reading was stopped." in page
+    assert "No report of these files has been written so far." in page
     assert "every 1s" not in page
     assert app.state.book.claim() is None
 
@@ -179,4 +181,37 @@ def test_why_no_edition_was_made_is_said(
     do(app)
     page = client.get("/uploads/1/checking?job=2").text
     assert "The edition could not be made. The checks ran against no edition" in page
+    assert "No edition has been made of this upload so far." in page
     assert "Back to the upload" in page
+
+
+@pytest.mark.parametrize("message", [DIED, STOPPED])
+def test_a_commit_that_was_written_before_its_process_died_is_no_failure(
+    app: FastAPI, client: TestClient, monkeypatch: pytest.MonkeyPatch, message: str
+) -> None:
+    """Between the edition and the last word of its job the process may end: it is looked up."""
+    monkeypatch.setattr(uploads, "AT_ONCE", 10)
+    checked(client, app)
+    client.post("/uploads/1/commit", data={"note": "as delivered"})
+    job = app.state.book.claim()
+    place = f"/uploads/1/checking?job={job.id}"
+    app.state.book.close(job, "failed", message)
+    page = client.get(place).text
+    assert f"The edition could not be made. {message}" in page
+    assert "No edition has been made of this upload so far." in page
+    assert "Nothing was changed" not in page
+    with app.state.sessions() as session:
+        commit_upload(session, upload_id=1, note="as delivered", by=LOCAL, now=NOON)
+    assert client.get(place).headers["location"] == "/c/dk/1/contents"
+
+
+def test_a_check_that_wrote_its_report_before_its_process_died_is_said(
+    app: FastAPI, client: TestClient, place: str
+) -> None:
+    job = app.state.book.claim()
+    with app.state.sessions() as session:
+        check_upload(session, upload_id=1)
+    app.state.book.close(job, "failed", DIED)
+    page = client.get(place).text
+    assert DIED in page
+    assert "A report of what the checks found stands under the upload." in page
