@@ -9,6 +9,7 @@ from hypothesis import strategies as st
 from numpy.typing import ArrayLike, NDArray
 
 from engine.ages import AgeGrid, Array
+from engine.causes.counts import CauseCounts
 from engine.chance import Chance, limits
 from engine.count_limits import Interval
 from engine.panel import Panel
@@ -105,6 +106,20 @@ def complete(panel: Panel) -> Panel:
     whole = replace(panel, deaths=4 * panel.deaths + 1, exposure=4.1 * older * panel.exposure)
     births = np.stack([live, np.ceil(live / 200), neonatal], axis=-1)
     return replace(panel, births=births, whole=whole, standard=whole)
+
+
+def parted(panel: Panel, causes: int = 3, *, seed: int = 1) -> CauseCounts:
+    """The deaths of a panel by cause: shares that differ from age to age, whole where the deaths
+    are; of the last cause hardly any die young, of the first hardly any die old."""
+    rng, ages = np.random.default_rng(seed), len(panel.grid)
+    lean = np.linspace(2.0, -2.0, causes)[:, None] * np.linspace(-1.0, 1.0, ages)
+    drawn = rng.gamma(2.0, size=(*panel.batch_shape, causes, ages)) * np.exp(-lean)
+    ends = np.floor(
+        np.cumsum(drawn, axis=-2) / drawn.sum(axis=-2, keepdims=True) * panel.deaths[..., None, :]
+        + 1e-9
+    )
+    ends[..., -1, :] = panel.deaths
+    return CauseCounts(np.diff(ends, axis=-2, prepend=0.0))
 
 
 def codes(panel: Panel, name: str = "isle") -> NDArray[np.str_]:

@@ -1,4 +1,5 @@
-"""Danish men 1953-57 and 1983-87 by cause: contributions against values computed elsewhere."""
+"""Danish men by fifteen causes: contributions between 1953-57 and 1983-87, and life expectancy
+without each cause from 1943 on, against values computed elsewhere."""
 
 from typing import NamedTuple
 
@@ -6,6 +7,10 @@ import numpy as np
 import pytest
 
 from engine.ages import AgeGrid, Array
+from engine.causes.counts import CauseCounts
+from engine.causes.deletion import GAIN
+from engine.causes.losses import years_lost
+from engine.causes.number import estimates
 from engine.chain import run
 from engine.decomposition import arriaga, contributions_by_cause
 from engine.indicators import find as indicator
@@ -25,7 +30,7 @@ class Side(NamedTuple):
 
 def side(period: str) -> Side:
     counted = [
-        row for row in denmark.rows("denmark_causes_1953_1983.csv") if row["period"] == period
+        row for row in denmark.rows("denmark_causes_1943_1988.csv") if row["period"] == period
     ]
     rates, years = (
         np.array([float(row[column]) for row in counted]).reshape(len(GRID), 15)
@@ -67,3 +72,24 @@ def test_arriagas_ages_and_his_causes_by_their_shares() -> None:
     np.testing.assert_allclose(
         ages * step / step.sum(axis=0), expected("contribution_years"), rtol=0, atol=1e-6
     )
+
+
+@pytest.mark.fast
+def test_life_expectancy_without_each_cause() -> None:
+    """With rates constant within groups the constant ratio is the chain on the rates left."""
+    for row in denmark.rows("denmark_cause_deleted.csv"):
+        one = side(row["period"])
+        e0 = run(one.panel, STEADY).table.ex[0]
+        found = estimates([GAIN], one.panel, CauseCounts(one.causes), STEADY)["gain"].value
+        without = [float(value) for name, value in row.items() if name.startswith("e0_without_")]
+        assert e0 == pytest.approx(float(row["e0_all_causes_sum"]), abs=1e-6)
+        np.testing.assert_allclose(e0 + found, without, rtol=0, atol=1e-6)
+
+
+@pytest.mark.fast
+def test_years_lost_by_cause_add_up_to_e_dagger() -> None:
+    for period in ("1943", "1963", "1988"):
+        one = side(period)
+        by_cell = years_lost(one.panel, CauseCounts(one.causes), STEADY)
+        all_ = indicator("edagger").value(run(one.panel, STEADY))
+        assert by_cell.sum() == pytest.approx(all_, abs=1e-12)
