@@ -14,6 +14,7 @@ from server.actions.discard_upload import discard_upload
 from server.actions.drafts import require_checkable
 from server.actions.erase_bytes import erase_bytes
 from server.actions.preview_upload import preview_upload
+from server.actions.weighing import takes_long
 from server.actions.works import taking_of as taking_of_job
 from server.actions.works import to_commit, to_foresee
 from server.pages import upload as upload_page
@@ -35,7 +36,6 @@ MAY_READ = [needs(Right.READ)]
 MAY_UPLOAD = [needs(Right.UPLOAD)]
 CHOICES = ("area", "years", "gives_way")  # of what is taken of an upload
 A_MOMENT = 2.0  # seconds a reader waits for the checks without being told how far they are
-AT_ONCE = 50_000  # rows of an upload that is made an edition while the reader waits
 
 
 @router.api_route("/uploads", methods=READ, dependencies=MAY_READ)
@@ -149,14 +149,14 @@ def commit(
     request: Request, session: SessionDep, viewer: ViewerDep, upload: int, form: FormDep
 ) -> Response:
     """Make the edition; where choices were made that were not shown yet, show what they change.
-    A large upload is worked on by a process of its own, and watched on a page."""
+    What takes long is worked on by a process of its own, and watched on a page."""
     sent = [(key, value) for key, value in form.multi_items() if isinstance(value, str)]
     taking = taking_of((key, value) for key, value in sent if key in CHOICES)
     if text(form, "do") == "look" or asked(taking) != text(form, "shown"):
         return _foresee(request, session, viewer, upload, taking)
     note, now = text(form, "note"), dt.datetime.now(dt.UTC)
     ready = require_ready(session, upload_id=upload, note=note, by=viewer)
-    if ready.rows > AT_ONCE:
+    if takes_long(session, ready, taking):
         session.rollback()
         params = to_commit(upload, note=note, by=viewer, now=now, taking=taking)
         job, _ = _set_to_work(request, "commit", params)

@@ -71,6 +71,20 @@ def of_rows(rows: Iterable[Any]) -> dict[Key, Vector]:
     }
 
 
+def numbers(
+    session: Session, collection: str, number: int, periods: tuple[str, ...] | None = None
+) -> int:
+    """How many numbers by age an edition holds in these periods (None: in all). One statement."""
+    found = session.execute(
+        select(func.sum(func.length(Schedule.vector))).where(
+            Schedule.collection_id == collections.id_of(collection),
+            Schedule.holds_in(number),
+            *chosen(Selection(periods=periods, cause=None)),
+        )
+    ).scalar_one()
+    return int(found or 0) // 8
+
+
 def held(session: Session, collection: str, number: int) -> dict[Key, AgeGrid]:
     """Every schedule of an edition and its age groups, without the numbers. One statement."""
     rows = session.execute(

@@ -34,3 +34,11 @@ def test_a_draft_is_discarded_instead(blank: TestClient) -> None:
     answer = blank.post(f"{place}/erase", data={"why": "names"})
     assert answer.status_code == 409
     assert "is a draft" in answer.text
+
+
+def test_a_draft_of_personal_data_is_discarded_as_such(blank: TestClient) -> None:
+    place = draft(blank, counts_csv(), code="salt")
+    assert 'name="personal" value="yes"' in blank.get(place).text
+    answer = blank.post(f"{place}/discard", data={"personal": "yes"})
+    assert (answer.status_code, answer.headers["location"]) == (303, "/uploads")
+    assert blank.get(place).status_code == 404

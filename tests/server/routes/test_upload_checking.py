@@ -9,6 +9,7 @@ from fastapi import FastAPI
 from starlette.testclient import TestClient
 
 from server.accounts.viewer import LOCAL
+from server.actions import weighing
 from server.actions.check_upload import check_upload
 from server.actions.commit_upload import commit_upload
 from server.actions.works import works
@@ -129,7 +130,7 @@ def do(app: FastAPI) -> None:
 def test_a_large_upload_is_made_an_edition_by_a_worker(
     app: FastAPI, client: TestClient, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    monkeypatch.setattr(uploads, "AT_ONCE", 10)
+    monkeypatch.setattr(weighing, "ROWS", 10)
     checked(client, app)
     asked = client.post("/uploads/1/commit", data={"note": "as delivered", "years": "2002"})
     looked = asked.headers["location"]  # first it is shown
@@ -157,7 +158,7 @@ def test_a_large_upload_is_made_an_edition_by_a_worker(
 def test_what_can_be_told_is_refused_before_a_worker_is_asked(
     app: FastAPI, client: TestClient, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    monkeypatch.setattr(uploads, "AT_ONCE", 10)
+    monkeypatch.setattr(weighing, "ROWS", 10)
     checked(client, app)
     client.post("/uploads/1/commit", data={"note": "first"})
     do(app)
@@ -170,7 +171,7 @@ def test_what_can_be_told_is_refused_before_a_worker_is_asked(
 def test_why_no_edition_was_made_is_said(
     app: FastAPI, client: TestClient, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    monkeypatch.setattr(uploads, "AT_ONCE", 10)
+    monkeypatch.setattr(weighing, "ROWS", 10)
     checked(client, app)
     client.post("/uploads/1/commit", data={"note": "late"})
     other = draft(client, counts_csv(), collection="dk")
@@ -190,7 +191,7 @@ def test_a_commit_that_was_written_before_its_process_died_is_no_failure(
     app: FastAPI, client: TestClient, monkeypatch: pytest.MonkeyPatch, message: str
 ) -> None:
     """Between the edition and the last word of its job the process may end: it is looked up."""
-    monkeypatch.setattr(uploads, "AT_ONCE", 10)
+    monkeypatch.setattr(weighing, "ROWS", 10)
     checked(client, app)
     client.post("/uploads/1/commit", data={"note": "as delivered"})
     job = app.state.book.claim()
