@@ -12,7 +12,7 @@ from server.intake.parsing import READER, Parsed, parse
 from server.intake.problems import Problem
 from server.intake.report import Report
 from server.jobs.executor import Tell, untold
-from server.store import areas, breaks, editions, schedules, uploads
+from server.store import areas, breaks, causes, editions, schedules, uploads
 from server.store.connect import Session, transaction
 from server.store.errors import Refused, Stale
 from server.store.records import (
@@ -119,6 +119,8 @@ def change_of(session: Session, sound: Sound, parsed: Parsed, taking: Taking) ->
         areas.listing(session, code, base) if base else (),
         breaks.listing(session, code, base) if base else (),
         lambda selection: schedules.load(session, code, base, selection),
+        causes.listing(session, code, base) if base else (),
+        lambda: schedules.held(session, code, base) if base else (),
     )
     made = made_of(parsed, taking, stood)
     return Change(
@@ -134,6 +136,8 @@ def change_of(session: Session, sound: Sound, parsed: Parsed, taking: Taking) ->
         ended_areas=made.ended_areas,
         breaks=made.breaks,
         ended_breaks=made.ended_breaks,
+        causes=made.causes.causes,
+        ended_causes=made.causes.ended,
     )
 
 

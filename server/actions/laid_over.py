@@ -3,16 +3,21 @@
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, replace
 
-from server.actions import totals
+import numpy as np
+
+from server.actions import cause_lists, totals
+from server.actions.cause_counts import outdated
 from server.actions.recoding import Recoded, listed, recoded
 from server.actions.taking import taken
 from server.intake import break_rows
 from server.intake.parsing import Parsed
 from server.intake.successions import Successions
 from server.store import breaks
-from server.store.records import Area, Break, Key, Selection, Taking, Vector
+from server.store.errors import Refused
+from server.store.records import Area, Break, Cause, Key, Selection, Taking, Vector
 
 Cells = Mapping[Key, Vector]
+ROUNDING = 1e-3  # deaths; shares of deaths are rounded, each by itself
 
 
 @dataclass(frozen=True, slots=True)
@@ -22,6 +27,8 @@ class Base:
     areas: tuple[Area, ...]  # in tree order
     breaks: tuple[Break, ...]
     load: Callable[[Selection], Cells]
+    causes: tuple[Cause, ...] = ()  # in the order of their list
+    held: Callable[[], Iterable[Key]] = tuple  # every schedule
 
 
 @dataclass(frozen=True, slots=True)
@@ -34,17 +41,20 @@ class Made:
     ended_areas: frozenset[str]
     breaks: tuple[Break, ...]
     ended_breaks: tuple[Break, ...]
+    causes: cause_lists.Laid
 
 
 def made_of(parsed: Parsed, taking: Taking, base: Base) -> Made:
     """What is taken of an upload, under the codes its areas have become, with totals and breaks.
 
-    Raises: Refused, as `taken`, `recoded` and `totals.laid_over` do.
+    Raises: Refused, as `taken`, `recoded`, `totals.laid_over` and `cause_lists.laid_over` do, and
+    where deaths by cause are more than all deaths.
     """
     cells, areas = taken(parsed, taking, base.areas)
     said = parsed.successions
     old = base.load(Selection(areas=said.codes, cause=None)) if said and base.areas else {}
     before, own = recoded(old, said), _own(cells, recoded(cells, said))
+    _require_within(own)
     cells = _laid(before.made, own, taking)
     known = {area.code: area for area in (*base.areas, *areas)}
     areas, ended = listed(areas, said, {*old.keys() - before.gone, *cells}, known)
@@ -68,13 +78,21 @@ def made_of(parsed: Parsed, taking: Taking, base: Base) -> Made:
         taking=taking,
         boundaries=_boundaries((*(one for one in base.breaks if one not in gone), *new)),
     )
+    lost = (summed.ended | before.gone) - summed.cells.keys()
     return Made(
         cells=summed.cells,
         areas=summed.areas,
-        ended=(summed.ended | before.gone) - summed.cells.keys(),
+        ended=lost,
         ended_areas=ended & {area.code for area in base.areas},
         breaks=new,
         ended_breaks=gone,
+        causes=cause_lists.laid_over(
+            parsed.causes,
+            base.causes,
+            new=summed.cells,
+            gone=lost | summed.cells.keys(),
+            held=base.held,
+        ),
     )
 
 
@@ -99,7 +117,36 @@ def _laid(before: Cells, own: dict[Key, Vector], taking: Taking) -> dict[Key, Ve
         return own
     gone = totals.giving_way(before, own, taking)
     gone |= {key._replace(sex="p") for key in own if key.sex in ("f", "m")}
+    gone |= outdated(before, {*own, *gone})
     return {key: cell for key, cell in before.items() if key not in gone} | own
+
+
+def _require_within(cells: Cells) -> None:
+    """Refuse deaths by cause that are more than the deaths of all causes."""
+    parts: dict[Key, list[Vector]] = {}
+    for key, cell in cells.items():
+        if key.cause:
+            parts.setdefault(key._replace(cause=""), []).append(cell)
+    for key, by_cause in totals.totals(parts).items():
+        total = cells.get(key)
+        if total is None:
+            continue
+        grid = total.grid.common(by_cause.grid)
+        given = by_cause.grid.regroup(by_cause.values, grid)
+        over = given - total.grid.regroup(total.values, grid)
+        over = np.nan_to_num(over)
+        if over.max() > ROUNDING:
+            at = int(over.argmax())
+            raise Refused(
+                "The deaths by cause of {area} in {period} ({sex}, age {age}) are {off} more than "
+                "the deaths of all causes. Correct the file, or hand in the causes alone: their "
+                "sum is then the deaths of all causes.",
+                area=key.area,
+                period=key.period,
+                sex=key.sex,
+                age=grid.labels[at],
+                off=f"{over[at]:.15g}",
+            )
 
 
 def _carried(stood: Iterable[Break], said: Successions, ended: Iterable[str]) -> tuple[Break, ...]:

@@ -10,6 +10,7 @@ from server.intake.parsing import READER
 from server.store import (
     areas,
     breaks,
+    causes,
     collections,
     digests,
     editions,
@@ -19,7 +20,17 @@ from server.store import (
 )
 from server.store.connect import Session
 from server.store.errors import Refused
-from server.store.records import Area, Basis, Break, Edition, Key, Selection, Upload, Vector
+from server.store.records import (
+    Area,
+    Basis,
+    Break,
+    Cause,
+    Edition,
+    Key,
+    Selection,
+    Upload,
+    Vector,
+)
 
 EVERYTHING = Selection(cause=None)
 
@@ -58,6 +69,7 @@ class _Content:
     cells: dict[Key, Vector]
     areas: tuple[Area, ...]
     breaks: tuple[Break, ...]
+    causes: tuple[Cause, ...]
     basis: Basis
 
     @property
@@ -67,6 +79,7 @@ class _Content:
                 digests.of_basis(self.basis),
                 *map(digests.of_area, self.areas),
                 *map(digests.of_break, self.breaks),
+                *map(digests.of_cause, self.causes),
                 *(digests.of_schedule(key, cell) for key, cell in self.cells.items()),
             )
         )
@@ -115,6 +128,7 @@ def _stored(session: Session, collection: str, edition: Edition) -> _Content:
         schedules.load(session, collection, edition.number, EVERYTHING),
         areas.listing(session, collection, edition.number),
         breaks.listing(session, collection, edition.number),
+        causes.listing(session, collection, edition.number),
         edition.basis,
     )
 
@@ -122,18 +136,18 @@ def _stored(session: Session, collection: str, edition: Edition) -> _Content:
 def _anew(session: Session, edition: Edition, contents: dict[int, _Content]) -> _Content:
     """Raises: Refused where the files, their reading or the base are not to be had."""
     upload, basis = _readable(session, edition)
-    base = _Content({}, (), (), basis)
+    base = _Content({}, (), (), (), basis)
     if edition.base and not edition.replaces:
         if edition.base not in contents:
             raise Refused("Its base, edition {base}, could not be made anew.", base=edition.base)
         base = contents[edition.base]
 
-    stood = Base(base.areas, base.breaks, base.load)
+    stood = Base(base.areas, base.breaks, base.load, base.causes, lambda: base.cells)
     made = made_of(read(session, upload), edition.taking, stood)
     kept = {key: cell for key, cell in base.cells.items() if key not in made.ended}
     said = {rows.of_break(one) for one in (*made.ended_breaks, *made.breaks)}
     held = (*(one for one in base.breaks if rows.of_break(one) not in said), *made.breaks)
-    return _Content(kept | made.cells, made.areas, held, basis)
+    return _Content(kept | made.cells, made.areas, held, made.causes.over(base.causes), basis)
 
 
 def _readable(session: Session, edition: Edition) -> tuple[Upload, Basis]:

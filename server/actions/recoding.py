@@ -6,13 +6,13 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from server.actions.cause_counts import COUNTED, DEATHS, places
 from server.actions.totals import total
 from server.intake.successions import Share, Successions
 from server.store.errors import Refused
 from server.store.records import Area, Key, Vector
 
 Cells = Mapping[Key, Vector]
-DEATHS, COUNTED = "deaths", "counted_deaths"
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,6 +26,7 @@ def recoded(cells: Cells, said: Successions) -> Recoded:
     a share is estimated and carries the deaths as they were counted.
 
     Persons beside women and men are left to be summed anew.
+    Of deaths by cause nothing is made where one of the codes to be merged has none at all.
     Raises: Refused where deaths or population of one of the codes to be merged are lacking.
     """
     parts: dict[Key, dict[str, Vector]] = defaultdict(dict)  # by the old code
@@ -48,12 +49,16 @@ def recoded(cells: Cells, said: Successions) -> Recoded:
             if key.measure == DEATHS and not share.whole:
                 counted = cells.get(key._replace(measure=COUNTED), cell)
                 parts[new._replace(measure=COUNTED)][key.area] = counted
-    made = {}
+    made, held = {}, places(cells)
     for new, found in sorted(parts.items()):
         codes = said.before(new.area, new.period)
         if new.measure == COUNTED:
             deaths = parts[new._replace(measure=DEATHS)]
             found = {code: found.get(code, deaths[code]) for code in deaths}
+        if new.cause:  # a code that has deaths by cause, but none of this one, has nil
+            if any((code, new.sex, new.period) not in held for code in codes):
+                continue
+            codes = tuple(code for code in codes if code in found)
         if lacking := [code for code in codes if code not in found]:
             _require_optional(new, lacking)
             continue
@@ -82,7 +87,7 @@ def _unshared(key: Key) -> Refused:
 
 
 def _summed_anew(key: Key, cells: Cells) -> bool:
-    return key.sex == "p" and all(key._replace(sex=sex) in cells for sex in ("f", "m"))
+    return key.sex == "p" and all(key._replace(sex=sex, cause="") in cells for sex in ("f", "m"))
 
 
 def _require_optional(new: Key, lacking: list[str]) -> None:

@@ -8,6 +8,7 @@ from typing import TypeVar
 import numpy as np
 
 from engine.ages import AgeGrid, Array
+from server.actions.cause_counts import COUNTED, DEATHS, causes_of, outdated, places
 from server.store.areas import in_tree_order
 from server.store.errors import Refused
 from server.store.records import ALL_OF_IT, Area, Key, Taking, Vector
@@ -18,7 +19,6 @@ Slices = dict[Slice, Vector]
 Of = TypeVar("Of", Key, Slice)
 Boundaries = Mapping[str, tuple[str, ...]]
 NO_BOUNDARIES: Boundaries = {}
-DEATHS, COUNTED = "deaths", "counted_deaths"
 
 
 @dataclass(frozen=True, slots=True)
@@ -111,7 +111,8 @@ def totalled(
     Persons are women and men together where both stand. An area that has parts and
     is not delivered is the sum of all its parts on their common age groups, or not available where
     a part is missing; what was handed in for it must agree with the sum. A sum is provisional
-    or estimated where a part of it is.
+    or estimated where a part of it is. Deaths by cause are summed where every part has some, and a
+    cause that a part lacks has no deaths there.
 
     `areas` are those of the new edition in tree order; `base` holds the periods needed.
     `boundaries` are the years of breaks of boundaries by area: a part whose series ends or begins
@@ -126,11 +127,11 @@ def totalled(
     parts, summed = _parts(areas), _summed(areas)
     sums_before = {key for key in base if key.area in summed | _summed(base_areas)}
     own = {key: cell for key, cell in handed.items() if key.area not in summed}
-    gone = sums_before | _outdated(base, own)
+    gone = sums_before | outdated(base, own)
     standing = {key: cell for key, cell in base.items() if key not in gone} | own
     made = _persons(own, standing)
     standing.update(made)
-    for key in _outdated(base, made):  # before wholes are made of them
+    for key in outdated(base, made):  # before wholes are made of them
         standing.pop(key, None)
     among = {part for whole in summed for part in parts[whole]}
     by_area: dict[str, dict[Slice, Vector]] = {}
@@ -139,8 +140,8 @@ def totalled(
             by_area.setdefault(key.area, {})[_slice(key)] = cell
     for whole in reversed(areas):  # parts before their whole
         if whole.code in summed:
-            sums = _sums({part: by_area.get(part, {}) for part in parts[whole.code]}, boundaries)
-            by_area[whole.code] = sums
+            own_parts = {part: by_area.get(part, {}) for part in parts[whole.code]}
+            sums = by_area[whole.code] = _sums(own_parts, boundaries)
             made.update(
                 (Key(whole.code, sex, period, measure, cause), cell)
                 for (sex, period, measure, cause), cell in sums.items()
@@ -158,14 +159,8 @@ def totalled(
         )
     for key in sorted(handed.keys() - own.keys()):
         _require_sum(key, handed[key], cells[key], len(parts[key.area]))
-    ended = (gone | _outdated(base, cells)) - cells.keys()
+    ended = (gone | outdated(base, cells)) - cells.keys()
     return Totalled(cells, frozenset(ended), areas)
-
-
-def _outdated(base: Cells, new: Cells) -> set[Key]:
-    """Deaths as counted whose deaths have come anew, and all of them counted."""
-    counted = (key for key in base if key.measure == COUNTED)
-    return {key for key in counted if key not in new and key._replace(measure=DEATHS) in new}
 
 
 def total(cells: list[Vector]) -> Vector:
@@ -231,7 +226,8 @@ def _require_sum(key: Key, handed: Vector, made: Vector, parts: int) -> None:
 def _persons(own: Cells, standing: Cells) -> dict[Key, Vector]:
     """Persons anew wherever women or men were handed in. Raises: Refused where persons were."""
     parts: dict[Key, list[Vector]] = {}
-    for area, period, measure, cause in dict.fromkeys((key.area, *key[2:]) for key in own):
+    slices = dict.fromkeys((key.area, *key[2:]) for key in own if not key.cause)
+    for area, period, measure, cause in slices:
         persons = Key(area, "p", period, measure, cause)
         women = standing.get(Key(area, "f", period, measure, cause))
         men = standing.get(Key(area, "m", period, measure, cause))
@@ -251,18 +247,41 @@ def _persons(own: Cells, standing: Cells) -> dict[Key, Vector]:
         if measure == DEATHS and any(beside):
             both = zip((women, men), beside, strict=True)
             parts[persons._replace(measure=COUNTED)] = _counted(both)
-    return totals(parts)
+    return totals(parts | _persons_by_cause(parts, standing))
+
+
+def _persons_by_cause(made: Iterable[Key], standing: Cells) -> dict[Key, list[Vector]]:
+    """The parts of the causes of persons whose deaths are made: where women and men both have
+    causes, those of either."""
+    held, causes = places(standing), causes_of(standing)
+    parts: dict[Key, list[Vector]] = {}
+    for persons in made:
+        sexes = [persons._replace(sex=sex) for sex in ("f", "m")]
+        if persons.measure != DEATHS or any(one[:3] not in held for one in sexes):
+            continue
+        for cause in causes[persons.area, persons.period]:
+            of_cause = [one._replace(cause=cause) for one in sexes]
+            there = [one for one in of_cause if one in standing]
+            beside = [standing.get(one._replace(measure=COUNTED)) for one in there]
+            parts[persons._replace(cause=cause)] = [standing[one] for one in there]
+            if any(beside):
+                both = zip((standing[one] for one in there), beside, strict=True)
+                parts[persons._replace(cause=cause, measure=COUNTED)] = _counted(both)
+    return parts
 
 
 def _sums(parts: dict[str, Slices], boundaries: Boundaries) -> Slices:
     """Sums of the slices that no part lacks; but for parts that have ended or not yet begun."""
     held = {code: [period for _, period, *_ in part] for code, part in parts.items()}
     absent = {code: _absent(boundaries.get(code, ()), held[code]) for code in parts}
+    caused = {code: {one[:2] for one in part if one[3]} for code, part in parts.items()}
     summands: dict[Slice, list[Vector]] = {}
     for which in sorted(set[Slice]().union(*parts.values())):
         sex, period, measure, cause = which
         lacking = [code for code, part in parts.items() if which not in part]
-        if measure == COUNTED or not all(absent[code](period) for code in lacking):
+        nil = {code for code in lacking if cause and (sex, period) in caused[code]}
+        missed = any(not absent[code](period) for code in lacking if code not in nil)
+        if measure == COUNTED or missed:
             continue
         there = [part for code, part in parts.items() if code not in lacking]
         summands[which] = [part[which] for part in there]

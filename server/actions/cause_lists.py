@@ -1,0 +1,63 @@
+"""The cause list of an edition to be: one list, that of the newest upload with causes."""
+
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
+
+from server.store.causes import in_tree_order, leaves
+from server.store.errors import Refused
+from server.store.records import Cause, Key
+
+
+@dataclass(frozen=True, slots=True)
+class Laid:
+    """See `Change`."""
+
+    causes: tuple[Cause, ...] = ()
+    ended: frozenset[str] = frozenset()
+
+    def over(self, base: tuple[Cause, ...]) -> tuple[Cause, ...]:
+        """The list of the edition on this base."""
+        said = {one.code for one in self.causes}
+        return (*(one for one in base if one.code not in said | self.ended), *self.causes)
+
+
+def laid_over(
+    handed: tuple[Cause, ...],
+    base: tuple[Cause, ...],
+    *,
+    new: Iterable[Key],
+    gone: frozenset[Key],
+    held: Callable[[], Iterable[Key]],
+) -> Laid:
+    """The list handed in takes the place of the base's. A list of which nothing is counted any
+    longer ends; `held` are the schedules of the base, `gone` those that it loses.
+
+    Raises: Refused where the list forms no tree, or counts that stay are of causes that are not, or
+    no longer without parts, in the list handed in.
+    """
+    listed = in_tree_order(handed)
+    used = {key.cause for key in new if key.cause}
+    _require_listed(used, listed or base)
+    if not base or (not any(key.cause for key in gone) and (not handed or handed == base)):
+        return Laid(listed)
+    stay = {key.cause for key in held() if key.cause and key not in gone}
+    if listed:
+        _require_kept(stay, listed)
+    known = {one.code for one in (listed if listed else base if stay | used else ())}
+    return Laid(listed, frozenset(one.code for one in base) - known)
+
+
+def _require_listed(used: set[str], causes: tuple[Cause, ...]) -> None:
+    if unknown := used - {leaf.code for leaf in leaves(causes)}:
+        raise ValueError(f"schedules of causes that the list has not, or has parts of: {unknown}")
+
+
+def _require_kept(stay: set[str], listed: tuple[Cause, ...]) -> None:
+    lacking = sorted(stay - {leaf.code for leaf in leaves(listed)})
+    if lacking:
+        raise Refused(
+            "The edition that stands has deaths of causes that the list handed in does not count: "
+            "{causes}. An edition has one list. Hand in a list that has these too, or let all that "
+            "stands give way.",
+            causes=", ".join(lacking[:12]) + (", …" if len(lacking) > 12 else ""),
+        )
