@@ -38,22 +38,29 @@ def laid_over(
     listed = in_tree_order(handed)
     used = {key.cause for key in new if key.cause}
     _require_listed(used, listed or base)
-    if not base or (not any(key.cause for key in gone) and (not handed or handed == base)):
+    stood, codes = _codes(base), _codes(listed)
+    if listed and _codes(leaves(base)) <= _codes(leaves(listed)):
+        return Laid(listed, stood - codes)
+    if not base or not (listed or any(key.cause for key in gone)):
         return Laid(listed)
     stay = {key.cause for key in held() if key.cause and key not in gone}
     if listed:
         _require_kept(stay, listed)
-    known = {one.code for one in (listed if listed else base if stay | used else ())}
-    return Laid(listed, frozenset(one.code for one in base) - known)
+        return Laid(listed, stood - codes)
+    return Laid((), frozenset() if stay | used else stood)
+
+
+def _codes(causes: Iterable[Cause]) -> frozenset[str]:
+    return frozenset(cause.code for cause in causes)
 
 
 def _require_listed(used: set[str], causes: tuple[Cause, ...]) -> None:
-    if unknown := used - {leaf.code for leaf in leaves(causes)}:
+    if unknown := used - _codes(leaves(causes)):
         raise ValueError(f"schedules of causes that the list has not, or has parts of: {unknown}")
 
 
 def _require_kept(stay: set[str], listed: tuple[Cause, ...]) -> None:
-    lacking = sorted(stay - {leaf.code for leaf in leaves(listed)})
+    lacking = sorted(stay - _codes(leaves(listed)))
     if lacking:
         raise Refused(
             "The edition that stands has deaths of causes that the list handed in does not count: "

@@ -17,7 +17,7 @@ from server.store.errors import Refused
 from server.store.records import Area, Break, Cause, Key, Selection, Taking, Vector
 
 Cells = Mapping[Key, Vector]
-ROUNDING = 1e-3  # deaths; shares of deaths are rounded, each by itself
+SLACK = 0.5  # deaths by which causes may exceed all: rounded fractions, as the checks allow
 
 
 @dataclass(frozen=True, slots=True)
@@ -135,7 +135,7 @@ def _require_within(cells: Cells) -> None:
         given = by_cause.grid.regroup(by_cause.values, grid)
         over = given - total.grid.regroup(total.values, grid)
         over = np.nan_to_num(over)
-        if over.max() > ROUNDING:
+        if over.max() > SLACK:
             at = int(over.argmax())
             raise Refused(
                 "The deaths by cause of {area} in {period} ({sex}, age {age}) are {off} more than "
