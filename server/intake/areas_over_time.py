@@ -9,7 +9,7 @@ from server.intake import break_rows, successions
 from server.intake.causes import own
 from server.intake.causes.placing import CauseList, own_list
 from server.intake.checks import breaks as break_checks
-from server.intake.checks import columns, files, lists, moved_counts
+from server.intake.checks import cause_lists, columns, files, lists, moved_counts
 from server.intake.checks import successions as succession_checks
 from server.intake.layout import layout
 from server.intake.lists import SmallTable, small_table
@@ -59,10 +59,21 @@ class Tables:
         return frozenset(line["code"] for line in lines)
 
 
-def own_causes(tables: Tables) -> CauseList | None:
-    """The cause list that was handed in, as far as it can be read."""
-    found = (own.read_lines(table) for table in tables.of if table.role == "causes")
-    return next((own_list(tuple(cause for _, cause in lines)) for lines in found), None)
+@dataclass(frozen=True, slots=True)
+class OwnCauses:
+    """The cause list of the user's own; without `list`, none was handed in, or it has errors."""
+
+    handed_in: bool
+    list: CauseList | None
+
+
+def own_causes(handed: Sequence[File], tables: Tables) -> OwnCauses:
+    given = any(file.role == "causes" for file in handed)
+    table = next((table for table in tables.of if table.role == "causes"), None)
+    wrong = table and any(one.file == table.name for one in errors_of(tables.problems))
+    if table is None or wrong:
+        return OwnCauses(given, None)
+    return OwnCauses(given, own_list(tuple(cause for _, cause in own.read_lines(table))))
 
 
 def tables_of(handed: Sequence[File]) -> Tables:
@@ -76,6 +87,8 @@ def tables_of(handed: Sequence[File]) -> Tables:
         else:
             table = small_table(laid, file.role)
             found += lists.problems_of(table)
+            if table.role == "causes":
+                found += cause_lists.problems_of(cause_lists.OwnList(table, own.read_lines(table)))
             tables.append(table)
         problems += found
     return Tables(tuple(tables), tuple(problems), unread)

@@ -6,8 +6,9 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from server.intake.areas_over_time import own_causes, tables_of, told
-from server.intake.causes.placing import CauseList, causes_of
+from server.intake.areas_over_time import OwnCauses, own_causes, tables_of, told
+from server.intake.causes.placing import CauseList, by_cause, causes_of
+from server.intake.causes.profiles import Profiles
 from server.intake.causes.spreading import by_leaves
 from server.intake.cells import (
     AREA_UNSTATED,
@@ -18,9 +19,11 @@ from server.intake.cells import (
     parts_of,
     whole_code,
 )
-from server.intake.checks import OF_LEDGER, columns, files, totals, unstated
+from server.intake.checks import OF_LEDGER, cause_profiles, columns, files, totals, unstated
 from server.intake.checks import areas as area_checks
+from server.intake.checks import causes as cause_sums
 from server.intake.checks import worked_out as derived
+from server.intake.checks.causes import CauseSums
 from server.intake.file_rows import FileRows, sorted_out
 from server.intake.forms import across
 from server.intake.forms.addresses import placed
@@ -98,16 +101,21 @@ def parse(
     # codes of which it is said what becomes of them are not missed
     left = standing.without(lists.old_codes) if standing else None
     counted = [file for file in handed if file.role not in LISTS]
-    own = own_causes(lists)
+    own = own_causes(handed, lists)
     counts = _counts(counted, left, own, warn=warn, reached=reached)
-    grids = {key: cell.grid for key, cell in counts.cells.items()}
+    grids = {key: cell.grid for key, cell in counts.cells.items() if not key.cause}
     said = told(lists, counts.areas, grids, standing)
+    causes = _causes(counted, own.list)
+    doubts = []
+    if warn and standing is not None and (causes or standing.causes):
+        profiles = Profiles(causes, counts.cells, standing, said.breaks)
+        doubts = cause_profiles.problems_of(profiles)
     return replace(
         counts,
         successions=said.successions,
         breaks=said.breaks,
-        causes=_causes(counted, own),
-        problems=(*counts.problems, *said.problems),
+        causes=causes,
+        problems=(*counts.problems, *said.problems, *doubts),
         row_count=counts.row_count + said.rows,
         sound_count=counts.sound_count + said.sound,
     )
@@ -119,10 +127,14 @@ def _causes(counted: Sequence[Handed], own: CauseList | None) -> tuple[Cause, ..
     return next((found.causes for found in asked if found), own.causes if own else ())
 
 
+def _list_of(file: Handed | Sheet, own: OwnCauses) -> CauseList | None:
+    return causes_of(file.role, file.mapping, own.list)
+
+
 def _counts(
     handed: Sequence[Handed],
     standing: Standing | None,
-    own: CauseList | None,
+    own: OwnCauses,
     *,
     warn: bool,
     reached: Reached,
@@ -137,11 +149,11 @@ def _counts(
         laid = layout(file.content, file.name, file.mapping.form)
         found = files.problems_of(laid)
         if not errors_of(found):
-            found += columns.problems_of(
-                columns.Mapped(laid, file.role, file.mapping, own is not None)
-            )
+            mapped = columns.Mapped(laid, file.role, file.mapping, own.handed_in)
+            found += columns.problems_of(mapped)
         problems += found
-        if errors_of(found):
+        unlisted = by_cause(file.role, file.mapping) and not _list_of(file, own)
+        if errors_of(found) or unlisted:
             unread += laid.row_count
         else:
             sheets.append(load(laid, file.mapping, file.role))
@@ -149,10 +161,7 @@ def _counts(
                 wide[laid.name] = spread
     codes, areas, clashes = _areas(sheets, handed)
     problems += clashes
-    cut = [
-        sorted_out(cells(sheet, codes), causes_of(sheet.role, sheet.mapping, own))
-        for sheet in sheets
-    ]
+    cut = [sorted_out(cells(sheet, codes), _list_of(sheet, own)) for sheet in sheets]
     died = _years_of_deaths(cut)
     done = [_dated(part, sheet.mapping, died) for part, sheet in zip(cut, sheets, strict=True)]
     problems += [problem for part in done for problem in part.problems]
@@ -170,10 +179,14 @@ def _counts(
         standing=standing,
     )
     reached(len(handed), CHECKING)
-    by_cause = [part.by_cause for part in done if part.by_cause is not None]
-    settled, spread_out = by_leaves(settle(ledger), by_cause)
+    parted = [part.by_cause for part in done if part.by_cause is not None]
+    settled, spread_out = by_leaves(settle(ledger), parted)
     problems += [problem for check in totals.CHECKS for problem in check.problems(ledger)]
     problems += [problem for check in unstated.CHECKS for problem in check.problems(settled)]
+    for one in parted:
+        for sums_check in cause_sums.CHECKS:
+            if warn or sums_check.severity == "error":
+                problems += sums_check.problems(CauseSums(one, ledger))
     made = _deaths_of_rates(settled.ledger, done, handed)
     problems += derived.problems_of(made.found)
     for check in OF_LEDGER:
@@ -255,6 +268,14 @@ def _dated(part: FileRows, mapping: Mapping, died: set[str]) -> FileRows:
     )
 
 
+def _unknown(done: Sequence[FileRows]) -> Ints:
+    """Places of which one file says that a count is not available, and none has an error."""
+    nowhere: Ints = np.zeros(0, np.int64)
+    unknown = np.unique(np.concatenate([nowhere, *(part.unknown for part in done)]))
+    faulty = [np.setdiff1d(part.spoiled, part.unknown) for part in done]
+    return np.setdiff1d(unknown, np.concatenate([nowhere, *faulty]))
+
+
 def _deaths_of_rates(
     ledger: Ledger, done: Sequence[FileRows], handed: Sequence[Handed]
 ) -> WorkedOut:
@@ -281,6 +302,7 @@ def _ledger(
         delivered=frozenset(place for place, area in enumerate(areas) if area.delivered),
         blocks=tuple(block for part in done for block in part.blocks if block.measure != RATE),
         spoiled=np.unique(np.concatenate([np.zeros(0, np.int64), *(p.spoiled for p in done)])),
+        unknown=_unknown(done),
         elsewhere=elsewhere,
         unplaced=unplaced,
         age_totals=tuple(one for part in done for one in part.age_totals if one.measure != RATE),

@@ -10,7 +10,7 @@ from engine.ages import AgeGrid
 from engine.panel import SEXES
 from server.intake.cells import place_of
 from server.intake.schedules import Block
-from server.store.records import Area, Basis, Break, Key, Vector
+from server.store.records import Area, Basis, Break, Cause, Key, Vector
 
 
 @dataclass(frozen=True, slots=True)
@@ -25,6 +25,7 @@ class Standing:
     basis: Basis | None = None
     breaks: tuple[Break, ...] = ()
     cells: Mapping[Key, Vector] = field(default_factory=dict)  # deaths and person-years
+    causes: tuple[Cause, ...] = ()  # deaths by them are among the cells for the newest years alone
 
     def without(self, codes: Collection[str]) -> "Standing":
         """The same without some areas and their counts."""

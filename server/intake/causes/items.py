@@ -5,6 +5,7 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from server.intake.causes.codes import Code, Range
 from server.intake.causes.placing import CauseList, Meaning
@@ -75,11 +76,25 @@ class Items:
         held = set(inside)
         return np.array([one for one in inside if not held & set(self._above(one))], np.int64)
 
-    def _within(self, at: int, ranges: tuple[Range, ...]) -> bool:
-        own = self.meanings[at].ranges if self.meanings[at].kind == "codes" else ()
+    def ranges(self, at: int) -> tuple[Range, ...]:
+        """The codes that an item holds, as far as it says."""
         if 0 < at <= self.entries:
             leaves = self.list.under[at - 1]
-            own = tuple(one for one, leaf in self.list.ranges if leaf in leaves)
+            return tuple(one for one, leaf in self.list.ranges if leaf in leaves)
+        return self.meanings[at].ranges if self.meanings[at].kind == "codes" else ()
+
+    def sex(self, at: int) -> str:
+        """The sex that an item befalls alone, as the list says; empty: both."""
+        entry = at - 1 if 0 < at <= self.entries else int(self.leaf[at])
+        return self.list.causes[entry].sex if entry >= 0 else ""
+
+    def kinds(self) -> NDArray[np.object_]:
+        """Of the leaf that each item is at or under; empty above the leaves."""
+        named = [cause.kind for cause in self.list.causes]
+        return np.array([*named, ""], object)[self.leaf]
+
+    def _within(self, at: int, ranges: tuple[Range, ...]) -> bool:
+        own = self.ranges(at)
         return bool(own) and all(any(other.covers(one) for other in ranges) for one in own)
 
     def _above(self, at: int) -> Iterator[int]:

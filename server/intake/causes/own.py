@@ -47,7 +47,9 @@ def _read(line: Line) -> Cause | None:
     sex = read_only_sex(line["sex"])
     if not is_code(line["code"]) or kind is None or care is None or sex is None:
         return None
-    ranges = tuple(part.strip() for part in re.split("[,;]", line["codes"]) if part.strip())
+    ranges = tuple(
+        part for text in re.split("[,;+]", line["codes"]) if (part := "".join(text.split()))
+    )
     label = line["name"] or line["code"]
     return Cause(line["code"], label, line["parent"], ranges, kind, care, sex)
 

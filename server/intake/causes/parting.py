@@ -5,13 +5,14 @@ the sum, and compared; where it is not, its parts are summed. Deaths of all caus
 the leaves of the list stay without a cause.
 """
 
+from collections.abc import Iterator
 from dataclasses import dataclass, replace
 
 import numpy as np
 
 from engine.ages import Array
 from server.intake.causes.items import ALL, Items
-from server.intake.cells import UNREADABLE, Cells, Ints
+from server.intake.cells import TOTAL, UNREADABLE, Cells, Flags, Ints
 from server.intake.schedules import DECIMALS
 from server.intake.sheets import Labels, Numbers
 
@@ -46,9 +47,7 @@ class ByCause:
     """Deaths of one file by leaves of its list."""
 
     items: Items
-    file: str
-    column: str  # of causes
-    row: Ints  # [cell], row in the file that stands for it, rising
+    cells: Cells  # one row each, of all causes
     cell: Ints  # [count]
     leaf: Ints  # [count], number in the list
     deaths: Array  # [count]
@@ -56,6 +55,35 @@ class ByCause:
     sums: Sums
     summed: Ints  # codes beside longer ones that are their sums
     apart: Ints  # and those that are not, and count beside them
+    texts: tuple[str, ...]  # distinct texts of the column of causes
+
+    @property
+    def file(self) -> str:
+        return self.cells.sheet.name
+
+    @property
+    def column(self) -> str:
+        """Of the causes."""
+        return self.cells.sheet.mapping.cause or self.deaths_column
+
+    @property
+    def deaths_column(self) -> str:
+        return self.cells.sheet.mapping.column("deaths")
+
+    @property
+    def all_causes(self) -> Array:
+        """Deaths, [cell]."""
+        return self.cells.sheet.numbers["deaths"].values
+
+    @property
+    def at_ages(self) -> Flags:
+        """Cells that are no totals over the ages."""
+        return np.asarray(self.cells.start != TOTAL)
+
+    @property
+    def row(self) -> Ints:
+        """Row in the file that stands for each cell, rising, [cell]."""
+        return self.cells.sheet.row
 
     def of(self, leaf: int) -> Array:
         """Deaths of a leaf, [cell]; all others for -1."""
@@ -112,8 +140,7 @@ def _filled(numbers: Numbers, cell: Ints, cells: int) -> Numbers:
 
 def put_together(rows: Rows) -> tuple[Cells, ByCause]:
     """One row for each cell, with the deaths of all causes, and the deaths by cause."""
-    cells, head = rows.cells, rows.head
-    sheet = cells.sheet
+    head, sheet = rows.head, rows.cells.sheet
     known = np.flatnonzero((rows.item >= 0) & np.isfinite(sheet.numbers["deaths"].values))
     items, summed, apart = _longer(rows, known)
     rows = replace(rows, items=items)
@@ -126,11 +153,10 @@ def put_together(rows: Rows) -> tuple[Cells, ByCause]:
     deaths = np.round(entry.value[own], DECIMALS)
     of_leaves = np.round(np.bincount(cell, deaths, len(head)), DECIMALS)
     total = np.where(total < of_leaves, of_leaves, np.round(total, DECIMALS))
+    together = _one_each(rows, total)
     by_cause = ByCause(
         items=items,
-        file=sheet.name,
-        column=sheet.mapping.cause,
-        row=sheet.row[head],
+        cells=together,
         cell=cell,
         leaf=leaf,
         deaths=deaths,
@@ -138,8 +164,9 @@ def put_together(rows: Rows) -> tuple[Cells, ByCause]:
         sums=sums,
         summed=summed,
         apart=apart,
+        texts=sheet.labels["cause"].texts,
     )
-    return _one_each(rows, total), by_cause
+    return together, by_cause
 
 
 def _one_each(rows: Rows, total: Array) -> Cells:
@@ -222,15 +249,34 @@ def _summed_up(rows: Rows, known: Ints) -> tuple[_Values, Sums]:
     differing: list[tuple[Ints, Array, Array]] = []
     for step in range(int(depth.max(initial=0)), -1, -1):
         here = level == step
-        differs = np.abs(given[here] - (parts := _found(keys, values, at[here]))) >= CLOSE
+        parts = _found(keys, values, at[here])
+        if step == 0:
+            parts = np.nan_to_num(parts)
+        differs = np.abs(given[here] - parts) >= CLOSE
         differing.append((at[here][differs], given[here][differs], parts[differs]))
         own = ~np.isin(keys, at[here])
         keys, values = _added(np.append(keys[own], at[here]), np.append(values[own], given[here]))
         kept.append((keys, values))
         keys, values = _added(keys - keys % size + items.parent[keys % size], values)
     key, value = (np.concatenate(part) for part in zip(*kept, strict=True))
+    differing += _beside(rows, known, key, value, at, given)
     sums = tuple(np.concatenate(part) for part in zip(*differing, strict=True))
     return _Values(key // size, key % size, value), _sums(rows, known, *sums)
+
+
+def _beside(
+    rows: Rows, known: Ints, key: Ints, value: Array, at: Ints, given: Array
+) -> Iterator[tuple[Ints, Array, Array]]:
+    """Ranges of several causes that differ from the sum of what they hold."""
+    items, size = rows.items, len(rows.items)
+    found = np.unique(rows.item[known])
+    for one in found[items.beside[found]].tolist():
+        inside = np.isin(key % size, items.members(one, found))
+        cells, parts = _added(key[inside] // size, value[inside])
+        own = at % size == one
+        beside = np.nan_to_num(_found(cells, parts, at[own] // size))
+        differs = np.abs(given[own] - beside) >= CLOSE
+        yield at[own][differs], given[own][differs], beside[differs]
 
 
 def _sums(rows: Rows, known: Ints, key: Ints, given: Array, parts: Array) -> Sums:

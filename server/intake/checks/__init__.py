@@ -9,6 +9,10 @@ from server.intake.checks import (
     areas,
     basis,
     breaks,
+    cause_lists,
+    cause_profiles,
+    cause_rows,
+    causes,
     columns,
     completeness,
     fields,
@@ -90,6 +94,12 @@ CHAPTERS = (
         "How the counts were made",
         "Are the deaths those of the people counted, and does the basis of an edition go on?",
         (basis,),
+    ),
+    Chapter(
+        "causes",
+        "Causes of death",
+        "Do the causes add up, can each be one of its sex and age, and are their shares as usual?",
+        (cause_lists, cause_rows, causes, cause_profiles),
     ),
 )
 

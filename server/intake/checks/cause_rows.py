@@ -5,7 +5,9 @@ from collections.abc import Iterator
 import numpy as np
 from numpy.typing import NDArray
 
+from engine.panel import SEXES
 from server.intake.causes.items import ALL
+from server.intake.causes.limits import ages_of, sexes_of
 from server.intake.causes.parting import Rows
 from server.intake.cells import UNREADABLE, Flags
 from server.intake.checks.check import Marks, RowCheck
@@ -14,7 +16,7 @@ from server.intake.checks.check import Marks, RowCheck
 def _marks(rows: Rows, failing: Flags, **found: NDArray[np.object_]) -> Iterator[Marks]:
     if failing.any():
         sheet = rows.cells.sheet
-        column = sheet.mapping.cause or "cause"
+        column = sheet.mapping.cause or sheet.mapping.column("deaths")
         yield Marks(column, failing, {"text": sheet.labels["cause"].at(failing), **found})
 
 
@@ -48,6 +50,33 @@ def _group_alone(rows: Rows) -> Iterator[Marks]:
     inner = at[(at > ALL) & (at <= items.entries) & ~items.is_leaf[at]]
     above = np.unique(np.concatenate([np.zeros(0, np.int64), *items.ancestors(at)]))
     yield from _marks(rows, np.isin(rows.item, np.setdiff1d(inner, above)))
+
+
+def _some(rows: Rows) -> Flags:
+    """Rows with deaths of a known cause."""
+    return np.asarray((rows.item >= 0) & (rows.cells.sheet.numbers["deaths"].values > 0))
+
+
+def _not_underlying(rows: Rows) -> Iterator[Marks]:
+    yield from _marks(rows, _some(rows) & (rows.items.kinds()[rows.item] == "not_underlying"))
+
+
+def _wrong_sex(rows: Rows) -> Iterator[Marks]:
+    only = sexes_of(rows.items)[rows.item]
+    other = (only >= 0) & (rows.cells.sex != only) & (rows.cells.sex < SEXES.index("p"))
+    failing = _some(rows) & other
+    sex = np.array(SEXES, object)[rows.cells.sex[failing]]
+    yield from _marks(rows, failing, sex=sex)
+
+
+def _wrong_age(rows: Rows) -> Iterator[Marks]:
+    first, last = ages_of(rows.items)
+    cells = rows.cells
+    early = (cells.end >= 0) & ~cells.open & (cells.end < first[rows.item])
+    failing = _some(rows) & (cells.start >= 0) & (early | (cells.start > last[rows.item]))
+    labels = cells.sheet.labels.get("age")
+    if labels is not None:
+        yield from _marks(rows, failing, age=labels.at(failing))
 
 
 def _people_differ(rows: Rows) -> Iterator[Marks]:
@@ -112,5 +141,36 @@ CHECKS: tuple[RowCheck[Rows], ...] = (
         expected="the number that stands beside the first cause",
         remedy="Give the people of all causes beside each cause, or in one row only.",
         mark=_people_differ,
+    ),
+    RowCheck(
+        key="not_underlying_cause",
+        severity="warning",
+        meaning="A code says the nature of an injury, or why health services were used, and not "
+        "what led to the death. Such deaths stay with the codes that are no underlying cause.",
+        found="deaths under “{text}”",
+        expected="the underlying cause, such as the fall and not the fracture",
+        remedy="Ask who coded the deaths for the external cause (V01–Y89).",
+        source="World Health Organization (2011), ICD-10, Volume 2, sections 4.1 and 4.2",
+        mark=_not_underlying,
+    ),
+    RowCheck(
+        key="cause_of_other_sex",
+        severity="warning",
+        meaning="A cause stands with a sex that it cannot befall.",
+        found="deaths from “{text}”, sex {sex}",
+        expected="such deaths of the other sex alone",
+        remedy="Look whether the sex or the cause is wrong; it may be a shifted column.",
+        source="World Health Organization (2011), ICD-10, Volume 2, categories limited to one sex",
+        mark=_wrong_sex,
+    ),
+    RowCheck(
+        key="cause_at_odd_age",
+        severity="warning",
+        meaning="A cause stands with an age at which it cannot, or hardly can, lead to a death: "
+        "childbirth at 70, a condition of the first days at 10.",
+        found="deaths from “{text}” at age {age}",
+        expected="an age at which the cause can be",
+        remedy="Look whether the age or the cause is wrong; late effects have codes of their own.",
+        mark=_wrong_age,
     ),
 )

@@ -5,12 +5,13 @@ from dataclasses import dataclass
 
 from server.intake.areas import is_code
 from server.intake.break_rows import NONE
+from server.intake.causes.own import read_care, read_kind, read_only_sex
 from server.intake.checks.check import Check
 from server.intake.labels import ALL_AGES, read_age, read_sex, read_year
 from server.intake.lists import MOST_ROWS, NEEDED, Line, SmallTable, number
 from server.intake.problems import Fault, Problem
 from server.intake.successions import COUNTS
-from server.store.records import BREAKS
+from server.store.records import BREAKS, CARE, CAUSE_KINDS
 
 
 @dataclass(frozen=True, slots=True)
@@ -75,6 +76,26 @@ _FIELDS = (
     ),
     _Field("breaks", "cause", is_code, _CODE),
     _Field("breaks", "ratio", _positive, "a number above 0, counts after over counts before"),
+    _Field("causes", "code", is_code, _CODE, needed=True),
+    _Field("causes", "parent", is_code, _CODE),
+    _Field(
+        "causes",
+        "kind",
+        lambda text: read_kind(text) is not None,
+        f"nothing, or one of {', '.join(CAUSE_KINDS)}",
+    ),
+    _Field(
+        "causes",
+        "care",
+        lambda text: read_care(text) is not None,
+        f"nothing, or one of {', '.join(CARE)}",
+    ),
+    _Field(
+        "causes",
+        "sex",
+        lambda text: read_only_sex(text) is not None,
+        "f or m, or nothing for both",
+    ),
     _Field("breaks", "ratio_error", _error, "a number of at least 0, the standard error"),
 )
 
@@ -116,7 +137,7 @@ CHECKS: tuple[Check[SmallTable], ...] = (
     Check(
         key="list_without_column",
         severity="error",
-        meaning="A small table, of areas over time or of breaks, lacks a column it cannot do "
+        meaning="A small table, of areas over time, breaks or causes, lacks a column it cannot do "
         "without.",
         found="no column of this name among {columns}",
         expected="a column headed {field}",
@@ -126,8 +147,8 @@ CHECKS: tuple[Check[SmallTable], ...] = (
     Check(
         key="list_too_long",
         severity="error",
-        meaning="A table of areas over time or of breaks is longer than any could be, so that it "
-        "may be another file.",
+        meaning="A table of areas over time, of breaks or of causes is longer than any could be, "
+        "so that it may be another file.",
         found="{count} rows",
         expected="at most {most}",
         remedy="Look whether the files were exchanged.",
@@ -136,7 +157,7 @@ CHECKS: tuple[Check[SmallTable], ...] = (
     Check(
         key="list_unreadable",
         severity="error",
-        meaning="A field of a table of areas over time or of breaks cannot be read.",
+        meaning="A field of a table of areas over time, of breaks or of causes cannot be read.",
         found="“{text}”",
         expected="{expected}",
         remedy="Correct the field; the template shows the form.",
