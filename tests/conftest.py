@@ -3,12 +3,11 @@
 import shutil
 from collections.abc import Callable, Iterator
 from contextlib import AbstractContextManager, contextmanager
-from itertools import count
 from pathlib import Path
 
 import pytest
 from hypothesis import settings as hypothesis_settings
-from sqlalchemy import Engine, create_engine, event, text
+from sqlalchemy import Engine, event
 from sqlalchemy.orm import Session, sessionmaker
 
 from server.store.connect import make_engine, sessions
@@ -20,7 +19,6 @@ hypothesis_settings.register_profile("patient", deadline=None)
 hypothesis_settings.load_profile("patient")
 
 BOTH = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgres)]
-_NUMBERS = count(1)
 
 # files of tests that take seconds together, by measure: the working loop leaves them out
 SLOW = {
@@ -71,11 +69,11 @@ def postgres_server() -> Iterator[str]:
 
 
 @pytest.fixture(scope="session")
-def postgres_template(postgres_server: str) -> str:
-    """Name of a migrated database from which the tests' own are copied."""
-    _create(postgres_server, "ebbline_template", "template1")
-    migrate(postgres_server + "ebbline_template")
-    return "ebbline_template"
+def postgres_one(postgres_server: str) -> Iterator[postgres.Reused]:
+    """The migrated database that one test after the other finds empty."""
+    with postgres.created(postgres_server, "ebbline") as address:
+        migrate(address)
+        yield postgres.Reused(address)
 
 
 @pytest.fixture(scope="session")
@@ -91,7 +89,8 @@ def empty_url(request: pytest.FixtureRequest) -> Iterator[str]:
     if request.param == "sqlite":
         yield f"sqlite:///{request.getfixturevalue('tmp_path') / 'empty.db'}"
     else:
-        yield from _fresh(request.getfixturevalue("postgres_server"), "template1")
+        with postgres.created(request.getfixturevalue("postgres_server"), "empty") as address:
+            yield address
 
 
 @pytest.fixture(params=BOTH)
@@ -100,8 +99,9 @@ def db_url(request: pytest.FixtureRequest) -> Iterator[str]:
     if request.param == "sqlite":
         yield request.getfixturevalue("sqlite_url")
     else:
-        template = request.getfixturevalue("postgres_template")
-        yield from _fresh(request.getfixturevalue("postgres_server"), template)
+        one: postgres.Reused = request.getfixturevalue("postgres_one")
+        yield one.address
+        one.empty()
 
 
 @pytest.fixture
@@ -149,21 +149,3 @@ def count_statements() -> Callable[[], AbstractContextManager[list[str]]]:
             event.remove(Engine, "before_cursor_execute", note)
 
     return counting
-
-
-def _fresh(server: str, template: str) -> Iterator[str]:
-    name = f"ebbline_{next(_NUMBERS)}"
-    _create(server, name, template)
-    yield server + name
-    _administer(server, f"DROP DATABASE {name} WITH (FORCE)")
-
-
-def _create(server: str, name: str, template: str) -> None:
-    _administer(server, f"CREATE DATABASE {name} TEMPLATE {template}")
-
-
-def _administer(server: str, statement: str) -> None:
-    engine = create_engine(server + "postgres", isolation_level="AUTOCOMMIT")
-    with engine.connect() as connection:
-        connection.execute(text(statement))
-    engine.dispose()

@@ -11,6 +11,7 @@ from pathlib import Path
 from typing import Any, NoReturn
 
 import pytest
+from sqlalchemy import NullPool, create_engine, inspect, text
 
 OPTIONS = "-c fsync=off -c full_page_writes=off -c synchronous_commit=off -c max_connections=30"
 
@@ -66,6 +67,42 @@ def server() -> Iterator[str]:
     finally:
         run("pg_ctl", "-m", "immediate", "-w", "stop")
         shutil.rmtree(top, ignore_errors=True)
+
+
+@contextmanager
+def created(server: str, name: str) -> Iterator[str]:
+    """The address of a further database on the server, empty; it is dropped afterwards."""
+    _administer(server + "postgres", f"CREATE DATABASE {name}")
+    yield server + name
+    _administer(server + "postgres", f"DROP DATABASE {name} WITH (FORCE)")
+
+
+class Reused:
+    """A migrated database that is emptied rather than made anew, which takes five times as long."""
+
+    def __init__(self, address: str) -> None:
+        self.address = address
+        engine = create_engine(address, poolclass=NullPool)
+        tables = [one for one in inspect(engine).get_table_names() if one != "alembic_version"]
+        with engine.connect() as connection:
+            (version,) = connection.execute(text("SELECT version_num FROM alembic_version")).one()
+        self._statements = (
+            "SELECT pg_terminate_backend(pid) FROM pg_stat_activity "
+            "WHERE datname = current_database() AND pid <> pg_backend_pid()",
+            f"TRUNCATE {', '.join(tables)} RESTART IDENTITY",
+            f"UPDATE alembic_version SET version_num = '{version}'",
+        )
+
+    def empty(self) -> None:
+        """No rows, numbers from 1, nobody else connected."""
+        _administer(self.address, *self._statements)
+
+
+def _administer(address: str, *statements: str) -> None:
+    engine = create_engine(address, poolclass=NullPool, isolation_level="AUTOCOMMIT")
+    with engine.connect() as connection:
+        for statement in statements:
+            connection.execute(text(statement))
 
 
 def _programs() -> Path | None:
