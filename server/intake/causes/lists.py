@@ -69,10 +69,11 @@ SHORT = (
     _cause("cancer-prostate", "Prostate cancer", "C61", parent="cancers", sex="m"),
     _cause(
         "cancer-other",
-        "Other cancers and tumours",
-        "C00-C17 C22-C32 C35-C49 C51-C60 C62-D48",
+        "Other cancers",
+        "C00-C17 C22-C32 C35-C49 C51-C60 C62-C97",
         parent="cancers",
     ),
+    _cause("tumours-other", "Benign and uncertain tumours", "D00-D48", parent="cancers"),
     _cause("circulatory", "Heart and circulation"),
     _cause("heart-attack", "Heart attack and ischaemic heart", "I20-I25", parent="circulatory"),
     _cause("stroke", "Stroke", "I60-I69", parent="circulatory"),
@@ -83,7 +84,10 @@ SHORT = (
     _cause("pneumonia", "Influenza and pneumonia", "J09-J18", parent="respiratory"),
     _cause("lungs-chronic", "Chronic lung disease", "J40-J47", parent="respiratory"),
     _cause(
-        "respiratory-other", "Other respiratory", "J00-J08 J19-J39 J48-J99", parent="respiratory"
+        "respiratory-other", "Other chronic respiratory", "J30-J39 J48-J98", parent="respiratory"
+    ),
+    _cause(
+        "respiratory-acute", "Other acute respiratory", "J00-J08 J19-J29 J99", parent="respiratory"
     ),
     _cause("digestive", "Digestion and liver"),
     _cause("liver-alcohol", "Alcoholic liver disease", "K70", parent="digestive"),
@@ -106,7 +110,13 @@ SHORT = (
     _cause("congenital", "Congenital conditions", "Q00-Q99", parent="early-life"),
     _cause("sudden-infant", "Sudden infant death", "R95", parent="early-life"),
     _cause("external", "External causes", kind="external"),
-    _cause("road-traffic", "Road and rail traffic", "V01-V89", parent="external", kind="external"),
+    _cause(
+        "road-traffic",
+        "Road traffic",
+        "V01-V04 V06 V09-V80 V87 V89 V99",
+        parent="external",
+        kind="external",
+    ),
     _cause(
         "suicide", "Suicide", "X60-X84 Y87.0", parent="external", kind="external", care="suicide"
     ),
@@ -125,7 +135,7 @@ SHORT = (
     _cause(
         "external-other",
         "Other external causes",
-        "V90-V99 W20-X39 X50-X59 Y35-Y89",
+        "V05 V07-V08 V81-V86 V88 V90-V98 W20-X39 X50-X59 Y35-Y89",
         parent="external",
         kind="external",
     ),
