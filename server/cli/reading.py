@@ -10,7 +10,7 @@ from pathlib import Path
 
 from server.cli.refusals import Declined
 from server.intake.forms.delimiters import NAMES
-from server.intake.mapping import COLUMNS, EVERY_ROLE, JANUARY, LISTS, Mapping
+from server.intake.mapping import COLUMNS, EVERY_ROLE, JANUARY, LISTS, SIGNS, Mapping
 from server.intake.parsing import Handed
 from server.intake.recognising.columns import fields_of
 from server.intake.recognising.kinds import sorted_out
@@ -28,7 +28,9 @@ OPTIONS = {  # that answer a question, by its key
     "units": "--unit",
     "rate_is": "--rate-is",
     "sexes": "--sex-code",
+    "signs": "--sign",
 }
+MEANINGS = {sign.replace("_", "-"): sign for sign in SIGNS}
 
 
 def handed(asked: argparse.Namespace, *, limit: int, before: Earlier | None = None) -> list[Handed]:
@@ -173,6 +175,7 @@ def _said(looked: Looked, asked: argparse.Namespace, *, told: bool) -> Said:
             )
         )
     decimal, thousands = ask.MARKS.get(numbers, (mapping.form.decimal, mapping.form.thousands))
+    signs = dict(mapping.signs) | _signs(asked)
     units = dict(mapping.units) | {n: size for n, size in asked.unit if n in looked.numbers}
     said = said_in(mapping, role)
     return replace(
@@ -186,7 +189,25 @@ def _said(looked: Looked, asked: argparse.Namespace, *, told: bool) -> Said:
         units=tuple(units.items()),
         rate_is=_of(asked.rate_is, role) or said.rate_is,
         sex_codes=tuple((dict(mapping.sex_codes) | dict(asked.sex_code)).items()),
+        signs=tuple((text, meaning) for text, meaning in signs.items() if text in looked.signs),
     )
+
+
+def _signs(asked: argparse.Namespace) -> dict[str, str]:
+    """What texts in place of numbers were said to mean."""
+    found = {}
+    for text, meaning in asked.sign:
+        if meaning not in MEANINGS:
+            raise Declined(
+                _(
+                    "--sign {text}={meaning}: expected one of {known}.",
+                    text=text,
+                    meaning=meaning,
+                    known=", ".join(MEANINGS),
+                )
+            )
+        found[text] = MEANINGS[meaning]
+    return found
 
 
 def _columns(role: str, asked: argparse.Namespace) -> dict[str, str]:
@@ -217,7 +238,7 @@ def _require_answers(name: str, looked: Looked) -> None:
                 "{name} does not say by itself: {listed}. Say it with {options}; see ebbline "
                 "hand-in --help.",
                 name=name,
-                listed="; ".join(ask.question(one, sexes) for one in looked.open),
+                listed="; ".join(ask.question(one, sexes, looked.signs) for one in looked.open),
                 options=", ".join(OPTIONS[one] for one in looked.open),
             )
         )

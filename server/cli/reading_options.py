@@ -105,6 +105,17 @@ def add_form(command: argparse.ArgumentParser) -> None:
         help=_("what figures are counted in, as in population=1000 or rate=1/100000"),
     )
     group.add_argument(
+        "--sign",
+        action="append",
+        default=[],
+        type=_pair,
+        metavar=_("TEXT=MEANING"),
+        help=_(
+            "what stands where a number belongs, as in --sign=-=nil: nil, not-available, withheld "
+            "or mistake"
+        ),
+    )
+    group.add_argument(
         "--not-stated",
         action="append",
         default=[],

@@ -20,7 +20,8 @@ class FileRows:
     problems: list[Problem]
     sound_rows: Flags  # [row]
     blocks: list[Block]
-    spoiled: Ints  # places with errors
+    spoiled: Ints  # places with errors, or with a count that is not known
+    unknown: Ints  # of them those without an error
     unplaced: bool
     age_totals: list[Aside]
     ageless: list[Aside]  # counts of unknown age
@@ -35,29 +36,39 @@ def sorted_out(read: Cells, causes: CauseList | None = None) -> FileRows:
     if causes is not None and (labels := read.sheet.labels.get("cause")):
         rows = rows_of(read, items_of(labels.texts, causes))
         read = rows.cells
-    problems, labelled, sound = _checked(read)
+    problems, fields_of = _checked(read)
+    sound = fields_of.sound
     if rows is None:
-        return _cut(read, labelled, sound, problems)
+        return _cut(read, fields_of, problems)
     problems += _checked_causes(rows, sound)
     read, by_cause = put_together(rows)
-    found = _cut(read, _all(rows, labelled), _all(rows, sound), problems, by_cause)
+    together = _Fields(*(_all(rows, of) for of in (fields_of.labelled, sound, fields_of.known)))
+    found = _cut(read, together, problems, by_cause)
     whole = found.sound_rows[rows.cell] & sound
     return replace(found, sound_rows=whole)
 
 
-def _checked(read: Cells) -> tuple[list[Problem], Flags, Flags]:
-    """Problems of single fields; the rows whose every label could be read, and the sound ones."""
+@dataclass(frozen=True, slots=True)
+class _Fields:
+    """What holds of the rows as far as each field tells by itself, [row]."""
+
+    labelled: Flags  # every label could be read
+    sound: Flags  # there is no error
+    known: Flags  # no count is said to be not available, or withheld
+
+
+def _checked(read: Cells) -> tuple[list[Problem], _Fields]:
+    """Problems of single fields."""
     sheet = read.sheet
     problems: list[Problem] = []
-    labelled = np.ones(len(sheet), bool)
-    sound = labelled.copy()
+    labelled, sound, known = (np.ones(len(sheet), bool) for _ in range(3))
     for field_check in fields.CHECKS:
         for marks in field_check.mark(read):
             problems += field_check.problems(marks, sheet.row, sheet.name)
-            sound &= ~marks.failing
+            (sound if field_check.severity == "error" else known)[marks.failing] = False
             if field_check.key not in fields.OF_NUMBERS:
                 labelled &= ~marks.failing
-    return problems, labelled, sound
+    return problems, _Fields(labelled, sound, known)
 
 
 def _checked_causes(rows: Rows, sound: Flags) -> list[Problem]:
@@ -79,12 +90,11 @@ def _all(rows: Rows, of: Flags) -> Flags:
 
 def _cut(
     read: Cells,
-    labelled: Flags,
-    sound: Flags,
+    of: _Fields,
     problems: list[Problem],
     by_cause: ByCause | None = None,
 ) -> FileRows:
-    rows = ordered(read, labelled)
+    rows, sound = ordered(read, of.labelled), of.sound
     failing = np.zeros(len(rows.take), bool)
     for age_check in ages.CHECKS:
         for marks in age_check.mark(rows):
@@ -92,15 +102,19 @@ def _cut(
             failing |= marks.failing
     sound[rows.take[failing]] = False
     torn = rows.place[rows.parted | rows.parted_before]  # rows of theirs may be the unplaced ones
-    spoiled = np.unique(np.concatenate([read.place[read.placed & ~sound], torn]))
+    faulty = np.unique(np.concatenate([read.place[read.placed & ~sound], torn]))
+    # a total that is not known leaves the counts it is of as they are
+    lacking = read.place[read.placed & ~of.known & (read.start != TOTAL)]
+    spoiled, told = np.union1d(faulty, lacking), sound & of.known
     return FileRows(
         problems=problems,
         sound_rows=sound,
         blocks=list(blocks(rows, spoiled)),
         spoiled=spoiled,
+        unknown=np.setdiff1d(lacking, faulty),
         unplaced=not read.placed.all(),
-        age_totals=list(asides(read, read.placed & sound & (read.start == TOTAL))),
-        ageless=list(asides(read, read.placed & sound & (read.start == UNSTATED), None)),
+        age_totals=list(asides(read, read.placed & told & (read.start == TOTAL))),
+        ageless=list(asides(read, read.placed & told & (read.start == UNSTATED), None)),
         grouped=list(groups(rows, spoiled)),
         by_cause=by_cause,
     )

@@ -1,7 +1,7 @@
 """All vectors of an upload together: what stands beside what."""
 
 from collections.abc import Iterator
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from functools import cached_property
 
 import numpy as np
@@ -28,6 +28,10 @@ class Pair:
     grid: AgeGrid
 
 
+def _nowhere() -> Ints:
+    return np.zeros(0, np.int64)
+
+
 @dataclass(frozen=True)
 class Ledger:
     """Vectors, and what was found around them."""
@@ -36,13 +40,20 @@ class Ledger:
     whole: int  # number of the area of which the others are parts; -1: there is none
     delivered: frozenset[int]  # numbers of areas kept as delivered
     blocks: tuple[Block, ...]
-    spoiled: Ints  # places with errors; what is missing there is not missed
+    spoiled: Ints  # places with errors or unknown counts; what is missing there is not missed
     unplaced: bool  # rows exist whose area, sex or year is not known, or files that were not read
     elsewhere: bool  # the edition that stands has parts of the whole that are not handed in here
     age_totals: tuple[Aside, ...]
     ageless: tuple[Aside, ...]  # counts of unknown age
     grouped: tuple[Aside, ...]  # counts by age whose area or sex is not known
     standing: Standing | None = None  # None: nothing is known of what stands
+    # of `spoiled` those without an error: a count is not available there
+    unknown: Ints = field(default_factory=_nowhere)
+
+    @property
+    def faulty(self) -> bool:
+        """Whether there are places with errors."""
+        return len(self.spoiled) > len(self.unknown)
 
     @cached_property
     def past(self) -> tuple[Block, ...]:

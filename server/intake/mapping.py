@@ -50,6 +50,8 @@ NUMBERS = tuple(dict.fromkeys(number for role in ROLES for number in numbers_of(
 
 
 RATE_KINDS = ("rate", "probability")  # deaths per person-year; share who die of those who begin
+# what a sign in the place of a number may mean; a mistake is told row by row
+SIGNS = ("nil", "not_available", "withheld", "mistake")
 JANUARY = "january"  # population of 1 January, averaged with that of the next to person-years
 
 
@@ -104,6 +106,8 @@ class Mapping:
     population_is: str = ""  # JANUARY, or empty: people at risk as they stand
     # a number and what each of its figures is to be multiplied by: ("population", "1000")
     units: tuple[tuple[str, str], ...] = ()
+    # texts that stand where numbers belong, and which of SIGNS each one is
+    signs: tuple[tuple[str, str], ...] = ()
     # of sex, age and area: what is done with counts that do not state it, "spread" or "left_out"
     unstated: tuple[tuple[str, str], ...] = ()
     cause_list: str = ""  # one of CAUSE_LISTS, where the deaths are by cause

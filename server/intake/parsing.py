@@ -5,6 +5,7 @@ from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from server.intake.areas_over_time import OwnCauses, own_causes, tables_of, told
 from server.intake.causes.placing import CauseList, by_cause, causes_of
@@ -268,9 +269,9 @@ def _dated(part: FileRows, mapping: Mapping, died: set[str]) -> FileRows:
     )
 
 
-def _unknown(done: Sequence[FileRows]) -> Ints:
+def _unknown(done: Sequence[FileRows]) -> NDArray[np.int64]:
     """Places of which one file says that a count is not available, and none has an error."""
-    nowhere: Ints = np.zeros(0, np.int64)
+    nowhere = np.zeros(0, np.int64)
     unknown = np.unique(np.concatenate([nowhere, *(part.unknown for part in done)]))
     faulty = [np.setdiff1d(part.spoiled, part.unknown) for part in done]
     return np.setdiff1d(unknown, np.concatenate([nowhere, *faulty]))

@@ -1,6 +1,6 @@
 """A first look at a handed-in file: its form as found, its columns and first rows."""
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from collections.abc import Mapping as Mapped
 from dataclasses import dataclass, field, replace
 
@@ -14,13 +14,14 @@ from server.intake.forms.workbooks import Tab
 from server.intake.layout import Layout, laid_out
 from server.intake.mapping import Form
 from server.intake.problems import Problem, errors_of
-from server.intake.recognising.marks import Marks, is_number, marks
+from server.intake.recognising.marks import Marks, is_number, is_sign, marks
 from server.intake.recognising.rows import heading
-from server.intake.sheets import distinct
+from server.intake.sheets import distinct, no_numbers
 
 SAMPLE = 8  # rows shown
 RAW = 60  # rows among which the heading is looked for
 TEXTS = 2_000  # different texts of a column that are looked at
+MOST_SIGNS = 8  # different texts that stand for numbers
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,6 +70,15 @@ class Reading:
         if self.problems:
             return tuple(dict.fromkeys(filter(None, self.values(column))))
         return distinct(self.file, self.columns.index(column), most)
+
+    def signs(self, columns: Sequence[str]) -> tuple[str, ...]:
+        """Texts that stand in these columns of numbers and may do so on purpose; none of columns
+        that have many, and hold something else."""
+        places = sorted({self.columns.index(one) for one in columns if one in self.columns})
+        if self.problems or not places:
+            return ()
+        found = tuple(filter(is_sign, no_numbers(self.file, places)))
+        return found if len(found) <= MOST_SIGNS else ()
 
 
 def read(content: bytes, name: str, form: Form | None = None, *, sample: int = SAMPLE) -> Reading:

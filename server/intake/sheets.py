@@ -16,7 +16,7 @@ from server.intake.forms.addresses import addresses
 from server.intake.forms.numbers import reader
 from server.intake.forms.units import multiplier_of
 from server.intake.layout import Layout
-from server.intake.mapping import COLUMNS, NUMBERS, OF_CAUSES, Form, Mapping, numbers_of
+from server.intake.mapping import COLUMNS, NUMBERS, OF_CAUSES, Mapping, numbers_of
 
 T = TypeVar("T")
 
@@ -84,12 +84,12 @@ def load(file: Layout, mapping: Mapping, role: str) -> Sheet:
     rows = np.flatnonzero(kept) + file.first
     labels = {field: _labels(table[column[field]]) for field in fields if field not in NUMBERS}
     numbers = {
-        field: _numbers(table[column[field]], mapping.form) for field in fields if field in NUMBERS
+        field: _numbers(table[column[field]], mapping) for field in fields if field in NUMBERS
     }
     sheet = Sheet(role, file.name, mapping, rows, labels, numbers)
     if wide:
         counted = {
-            name: _numbers(table[file.columns.index(name)], mapping.form) for name in wide.columns
+            name: _numbers(table[file.columns.index(name)], mapping) for name in wide.columns
         }
         sheet = _long(sheet, wide, counted)
     scaled = {field: _scaled(found, mapping, field) for field, found in sheet.numbers.items()}
@@ -139,6 +139,17 @@ def distinct(file: Layout, column: int, most: int) -> tuple[str, ...]:
     """The first different texts of a column without the blanks around them."""
     texts = _read(file, {column: "object"})[column].dropna().unique()
     return tuple(dict.fromkeys(filter(None, map(str.strip, texts))))[:most]
+
+
+def no_numbers(file: Layout, columns: Sequence[int]) -> tuple[str, ...]:
+    """The different texts of these columns, over the whole file, that are not plain numbers."""
+    table = _read(file, dict.fromkeys(columns, "object"))
+    found: dict[str, None] = {}
+    for column in table:
+        written = table[column].dropna().unique()
+        strange = np.isnan(np.asarray(pd.to_numeric(written, errors="coerce"), float))
+        found.update(dict.fromkeys(filter(None, map(str.strip, written[strange]))))
+    return tuple(found)
 
 
 def _table(file: Layout, texts: set[int], numbers: set[int]) -> pd.DataFrame:
@@ -209,12 +220,15 @@ def _coded(which: NDArray[np.int64], written: Sequence[str]) -> Labels:
     return Labels(codes[which], tuple(distinct))
 
 
-def _numbers(column: "pd.Series[object]", form: Form) -> Numbers:
+def _numbers(column: "pd.Series[object]", mapping: Mapping) -> Numbers:
+    """A sign that was said to mean nil is 0."""
     if column.dtype == "float64":
         return Numbers(column.to_numpy(np.float64), None)
     texts = _labels(column)
-    read = texts.read(reader(form.decimal, form.thousands), math.nan)
-    return Numbers(np.array(read)[texts.codes], texts)
+    read = reader(mapping.form.decimal, mapping.form.thousands)
+    nil = {text for text, meaning in mapping.signs if meaning == "nil"}
+    values = texts.read(lambda text: 0.0 if text in nil else read(text), math.nan)
+    return Numbers(np.array(values)[texts.codes], texts)
 
 
 def _scaled(found: Numbers, mapping: Mapping, field: str) -> Numbers:

@@ -89,13 +89,14 @@ def _sent(looked: Looked) -> tuple[tuple[str, str], ...]:
             (f"{role}.sex_text.{place}", code.text)
             for place, code in enumerate(looked.noticed.sexes)
         ),
+        *((f"{role}.sign_text.{place}", sign) for place, sign in enumerate(looked.signs)),
     )
 
 
 def open_questions(looked: Looked) -> tuple[str, ...]:
     """What the file does not say by itself and nothing is chosen for yet."""
     sexes = tuple(code.text for code in looked.noticed.sexes if code.asked)
-    return tuple(ask.question(one, sexes) for one in looked.open)
+    return tuple(ask.question(one, sexes, looked.signs) for one in looked.open)
 
 
 def sample(looked: Looked) -> Table:
@@ -204,7 +205,7 @@ def _asked(looked: Looked) -> list[Field]:
         kinds = ask.rate_kinds()
         label = _("These are")
         fields.append(select(name, label, kinds, mapping.rate_is, width="wide", required=True))
-    return fields + _sexes(looked)
+    return fields + _signs(looked) + _sexes(looked)
 
 
 def _units(looked: Looked) -> list[Field]:
@@ -228,6 +229,23 @@ def _units(looked: Looked) -> list[Field]:
             )
         )
     return fields
+
+
+def _signs(looked: Looked) -> list[Field]:
+    """What stands where a number belongs: nothing is chosen beforehand."""
+    stated = dict(looked.mapping.signs)
+    return [
+        select(
+            f"{looked.role}.sign.{place}",
+            ask.sign_label(sign),
+            ask.sign_meanings(),
+            stated.get(sign, ""),
+            hint=ask.sign_hint(),
+            width="whole",
+            required=True,
+        )
+        for place, sign in enumerate(looked.signs)
+    ]
 
 
 def _sexes(looked: Looked) -> list[Field]:

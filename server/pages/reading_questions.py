@@ -85,6 +85,10 @@ def open_errors(looked: tuple[Looked, ...], texts: Mapped[str, str]) -> dict[str
         for number, _proposal in one.units:
             if number not in units:
                 found[f"{role}.unit.{number}"] = ask.unit_missing()
+        signs = dict(one.mapping.signs)
+        for place, sign in enumerate(one.signs):
+            if sign not in signs:
+                found[f"{role}.sign.{place}"] = ask.sign_missing(sign)
         codes = dict(one.mapping.sex_codes)
         for place, code in enumerate(one.noticed.sexes):
             if code.asked and code.text not in codes:

@@ -7,6 +7,7 @@ from typing import Any
 
 from server.intake import mapping as intake
 from server.intake.forms.delimiters import NAMES
+from server.intake.reading import MOST_SIGNS
 from server.intake.recognising.look import Said
 from server.pages.upload_reading import Answers
 from server.sentences import reading_form as ask
@@ -46,6 +47,10 @@ def _said(form: Form, role: str, errors: dict[str, str]) -> Said:
         (form.get(f"{role}.sex_text.{place}", ""), form.get(f"{role}.sex.{place}", ""))
         for place in range(12)
     )
+    signs = (
+        (form.get(f"{role}.sign_text.{place}", ""), form.get(f"{role}.sign.{place}", ""))
+        for place in range(MOST_SIGNS)
+    )
     units = (
         (number, unit)
         for number in intake.NUMBERS
@@ -63,6 +68,7 @@ def _said(form: Form, role: str, errors: dict[str, str]) -> Said:
         units=tuple(units),
         rate_is=form.get(f"{role}.rate_is", ""),
         sex_codes=tuple((said, sex) for said, sex in codes if said and sex),
+        signs=tuple((said, what) for said, what in signs if said and what in intake.SIGNS),
     )
 
 

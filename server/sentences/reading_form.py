@@ -157,6 +157,24 @@ def sex_hint(proposed: str, *, asked: bool) -> str:
     return _("likely {sex}", sex=dict(sex_meanings())[proposed])
 
 
+def sign_meanings() -> Options:
+    return (
+        choose(),
+        ("nil", _("nil: there were none, read as 0")),
+        ("not_available", _("not available: its area, sex and year is left out")),
+        ("withheld", _("withheld by the source: its area, sex and year is left out")),
+        ("mistake", _("nothing: a mistake, to be told row by row")),
+    )
+
+
+def sign_label(text: str) -> str:
+    return _("“{text}” in place of a number means", text=text)
+
+
+def sign_hint() -> str:
+    return _("tables differ in this; see the notes of the source")
+
+
 def number_label() -> str:
     return _("The cells count")
 
@@ -258,6 +276,10 @@ def sex_missing(text: str) -> str:
     return _("Say which sex “{text}” stands for.", text=text)
 
 
+def sign_missing(text: str) -> str:
+    return _("Say what “{text}” in place of a number means.", text=text)
+
+
 def area_missing() -> str:
     return _("Give the one area that the counts are of: no column says it.")
 
@@ -308,10 +330,12 @@ def still_open(count: int) -> str:
     )
 
 
-def question(key: str, sexes: tuple[str, ...]) -> str:
+def question(key: str, sexes: tuple[str, ...], signs: tuple[str, ...]) -> str:
     """A question about a file that nothing is chosen for yet."""
     if key == "sexes":
         return _("which sex is meant by {texts}", texts=quoted(sexes))
+    if key == "signs":
+        return _("what is meant by {texts} in place of a number", texts=quoted(signs))
     return {
         "kind": _("what it holds"),
         "marks": _("how numbers are written"),

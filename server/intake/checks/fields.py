@@ -81,6 +81,20 @@ def _no_number(text: str) -> bool:
     return not _thousands(text) and not _decimal_comma(text)
 
 
+def _mistaken(cells: Cells) -> Iterator[Marks]:
+    """Texts that are no numbers, but for those that were said to stand for one."""
+    signs = {text for text, meaning in cells.sheet.mapping.signs if meaning != "mistake"}
+    yield from _texts_that(lambda text: _no_number(text) and text not in signs)(cells)
+
+
+def _standing_for(meaning: str) -> Callable[[Cells], Iterator[Marks]]:
+    def mark(cells: Cells) -> Iterator[Marks]:
+        signs = {text for text, means in cells.sheet.mapping.signs if means == meaning}
+        yield from _texts_that(signs.__contains__)(cells)
+
+    return mark
+
+
 def _blank(numbers: Numbers) -> Flags:
     if numbers.texts is None:
         return np.isnan(numbers.values)
@@ -95,6 +109,8 @@ OF_NUMBERS = {
     "missing_count",
     "negative_count",
     "not_finite",
+    "count_not_available",
+    "count_withheld",
 }
 
 CHECKS: tuple[RowCheck[Cells], ...] = (
@@ -195,7 +211,29 @@ CHECKS: tuple[RowCheck[Cells], ...] = (
         found="“{text}”",
         expected="a number of at least 0",
         remedy="Write the count as plain digits; 0 where there was none.",
-        mark=_texts_that(_no_number),
+        mark=_mistaken,
+    ),
+    RowCheck(
+        key="count_not_available",
+        severity="warning",
+        meaning="The file says that a count is not available, so that its area, sex and year "
+        "cannot be worked out.",
+        found="“{text}”, said to mean not available",
+        expected="a count for every age",
+        remedy="Nothing: the area, sex and year is left out, and no total is made of it. Hand the "
+        "count in once it is known.",
+        mark=_standing_for("not_available"),
+    ),
+    RowCheck(
+        key="count_withheld",
+        severity="warning",
+        meaning="The source withholds a count, so that its area, sex and year cannot be worked "
+        "out.",
+        found="“{text}”, said to mean withheld",
+        expected="a count for every age",
+        remedy="Ask the source for wider age groups or added years; until then the area, sex and "
+        "year is left out, and no total is made of it.",
+        mark=_standing_for("withheld"),
     ),
     RowCheck(
         key="missing_count",

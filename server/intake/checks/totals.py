@@ -76,7 +76,7 @@ def _whole(ledger: Ledger) -> Iterator[Fault]:
 
 def _parts_missing(ledger: Ledger) -> Iterator[Fault]:
     """Wholes to be summed some of whose parts are not in the upload."""
-    if ledger.whole in ledger.delivered or ledger.unplaced or len(ledger.spoiled):
+    if ledger.whole in ledger.delivered or ledger.unplaced or ledger.faulty:
         return
     for measure in MEASURES.values():
         for place in ledger.wholes(measure):

@@ -84,7 +84,7 @@ def _stated(ledger: Ledger, measure: str, at: Ints) -> Ints:
 
 
 def _too_many(settled: Settled, *, spread: bool) -> Iterator[Fault]:
-    if settled.delivered.unplaced or len(settled.delivered.spoiled):
+    if settled.delivered.unplaced or settled.delivered.faulty:
         return  # what is stated is not all known
     for shares in _shares(settled, spread=spread):
         most = shares.parts[0].source.rule.most
@@ -115,7 +115,7 @@ def _rows(parts: list[Part], area: int, year: int) -> Ints:
 
 
 def _nothing_to_go_by(settled: Settled) -> Iterator[Fault]:
-    if settled.delivered.unplaced or len(settled.delivered.spoiled):
+    if settled.delivered.unplaced or settled.delivered.faulty:
         return
     for part in settled.lost:
         for line, place in enumerate(part.place.tolist()):
@@ -124,6 +124,18 @@ def _nothing_to_go_by(settled: Settled) -> Iterator[Fault]:
                 "count": float(part.source.values[line]),
             }
             yield part.source.fault(part.source.row[line], values)
+
+
+def _beside_unknown(settled: Settled) -> Iterator[Fault]:
+    """Counts to be shared out in a year of which some stated counts are not available: the rest
+    would get their share."""
+    ledger = settled.delivered
+    years = np.unique(parts_of(ledger.unknown)[2])
+    for part in settled.parts:
+        if part.spread:
+            for year in np.intersect1d(parts_of(part.place)[2], years).tolist():
+                rows = part.source.row[parts_of(part.place)[2] == year]
+                yield part.source.fault(rows, {"year": str(year)})
 
 
 def _twice(settled: Settled) -> Iterator[Fault]:
@@ -196,6 +208,16 @@ CHECKS: tuple[Check[Settled], ...] = (
         expected="stated counts of the same year to go by",
         remedy="Add the stated counts, or leave these out.",
         find=_nothing_to_go_by,
+    ),
+    Check(
+        key="shared_beside_unknown",
+        severity="error",
+        meaning="Counts are to be shared out in a year of which some stated counts are not "
+        "available or withheld, so that the others would get their share.",
+        found="counts of {year} to be shared out, and others of that year that are not known",
+        expected="all stated counts of the year",
+        remedy="Leave these counts out, or hand in the stated ones.",
+        find=_beside_unknown,
     ),
     Check(
         key="not_stated_twice",

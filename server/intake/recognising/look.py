@@ -38,6 +38,7 @@ class Said:
     units: tuple[tuple[str, str], ...] = ()
     rate_is: str = ""
     sex_codes: tuple[tuple[str, str], ...] = ()
+    signs: tuple[tuple[str, str], ...] = ()  # texts in place of numbers, and what they mean
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,7 +62,8 @@ class Looked:
     marks: Marks = PLAIN
     numbers: tuple[str, ...] = ()  # those that the file holds under this mapping
     units: tuple[tuple[str, str], ...] = ()  # numbers whose unit is asked, and the one proposed
-    # questions without an answer: kind, marks, units, sexes, number, rate_is
+    signs: tuple[str, ...] = ()  # texts in place of numbers, whose meaning is asked
+    # questions without an answer: kind, marks, signs, units, sexes, number, rate_is
     open: tuple[str, ...] = ()
     changed: bool = False  # what was said made another table of it: its columns want a look
     before: Before | None = None  # whose mapping was taken over
@@ -169,6 +171,7 @@ def said_in(mapping: Mapping, role: str) -> Said:
         units=mapping.units,
         rate_is=mapping.rate_is,
         sex_codes=mapping.sex_codes,
+        signs=mapping.signs,
     )
 
 
@@ -191,6 +194,7 @@ def _mapped(reading: Reading, role: str, said: Said) -> Mapping:
         units=said.units,
         rate_is=said.rate_is,
         sex_codes=said.sex_codes,
+        signs=said.signs,
     )
 
 
@@ -208,10 +212,12 @@ def _looked(reading: Reading, role: str, mapping: Mapping, said: Said | None) ->
     told = {number for number, _ in units}
     stated = tuple(unit for unit in mapping.units if unit[0] in told or unit[1] != "1")
     mapping = replace(mapping, units=stated)
+    signs = reading.signs([column for each in numbers.values() for column in each])
     answered = dict(mapping.sex_codes)
     missing = {
         "kind": not (kind(reading).role or (said and said.kind)),
         "marks": not found.sure and not (said and said.marks),
+        "signs": bool(set(signs) - dict(mapping.signs).keys()),
         "number": bool(mapping.form.across) and "" in numbers,
         "units": bool(told - {number for number, _ in stated}),
         "rate_is": "rate" in numbers and not mapping.rate_is,
@@ -227,6 +233,7 @@ def _looked(reading: Reading, role: str, mapping: Mapping, said: Said | None) ->
         marks=found,
         numbers=tuple(number for number in numbers if number),
         units=units,
+        signs=signs,
         open=tuple(question for question, is_open in missing.items() if is_open),
     )
 

@@ -7,6 +7,11 @@ from dataclasses import dataclass, replace
 _BLANKS = " \u00a0\u2009\u202f"
 _PARTS = f"{_BLANKS}'\u2019.,"
 _NUMBER = re.compile(rf"[+-]?\d+(?:[{_PARTS}]\d+)*(?:[eE][+-]?\d+)?|[+-]?[.,]\d+")
+_WORDS = frozenset(
+    {"n/a", "na", "n.a.", "#n/a", "n.d.", "nd", "nil", "none", "null", "nan", "missing"}
+    | {"suppressed", "withheld", "confidential", "unavailable", "not available", "not applicable"}
+)
+LONGEST_SIGN = 5
 _GROUPED = {mark: re.compile(rf"[+-]?\d{{1,3}}(?:{re.escape(mark)}\d{{3}})+") for mark in _PARTS}
 
 
@@ -28,6 +33,19 @@ def is_number(text: str) -> bool:
     [True, True, True, False, False, False]
     """
     return _NUMBER.fullmatch(text.strip()) is not None
+
+
+def is_sign(text: str) -> bool:
+    """Whether a text may stand on purpose where a number belongs: signs alone, one letter, or a
+    usual word. What it means differs from table to table.
+
+    >>> [is_sign(text) for text in ("-", "–", "..", "x", "n/a", "12a", "-3", "north", "")]
+    [True, True, True, True, True, False, False, False, False]
+    """
+    bare = text.strip().casefold()
+    if bare in _WORDS or (len(bare) == 1 and bare.isalpha()):
+        return True
+    return 0 < len(bare) <= LONGEST_SIGN and not any(map(str.isalnum, bare))
 
 
 def marks(texts: Iterable[str], *, counts: bool = True) -> Marks:
