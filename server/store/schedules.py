@@ -103,7 +103,7 @@ def held(session: Session, collection: str, number: int) -> dict[Key, AgeGrid]:
 
 
 def contents(session: Session, collection: str, number: int) -> Contents:
-    """What an edition holds, without the numbers. One statement."""
+    """What an edition holds of all causes, without the numbers. One statement."""
     rows = session.execute(
         select(
             Schedule.area,
@@ -113,7 +113,11 @@ def contents(session: Session, collection: str, number: int) -> Contents:
             func.max(Schedule.status).label("status"),  # 'provisional' comes after 'final'
             func.max(case((_revised(number), 1), else_=0)).label("revised"),
         )
-        .where(Schedule.collection_id == collections.id_of(collection), Schedule.holds_in(number))
+        .where(
+            Schedule.collection_id == collections.id_of(collection),
+            Schedule.holds_in(number),
+            Schedule.cause == "",
+        )
         .group_by(Schedule.area, Schedule.sex, Schedule.period, Schedule.measure)
     ).all()
     status: dict[tuple[str, str, str], str] = {}

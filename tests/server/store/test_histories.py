@@ -4,6 +4,7 @@ as it was committed. EBBLINE_HISTORIES=300 in the environment makes the long run
 import os
 import random
 from collections.abc import Iterator
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -12,17 +13,31 @@ from sqlalchemy.exc import IntegrityError
 from sqlalchemy.orm import Session
 
 from engine.ages import AgeGrid
-from server.store import areas, breaks, digests, editions, ranges, rows, schedules
+from server.store import areas, breaks, causes, digests, editions, ranges, rows, schedules
 from server.store.connect import transaction
-from server.store.records import Area, Basis, Break, Change, Edition, Key, Selection, Vector
+from server.store.records import (
+    Area,
+    Basis,
+    Break,
+    Cause,
+    Change,
+    Edition,
+    Key,
+    Selection,
+    Vector,
+)
 from tests.factories import NOON, stored_collection
 
 GRIDS = [AgeGrid((0, 1, 5, 10)), AgeGrid((0, 5, 10)), AgeGrid((0, 1, 2, 3, 4, 5, 10))]
 HISTORIES = {"sqlite": 60, "postgresql": 15}
 Content = tuple[
-    dict[Key, tuple[str, str, bytes]], frozenset[tuple[str, str, bool]], Basis, frozenset[Break]
+    dict[Key, tuple[str, str, bytes]],
+    frozenset[tuple[str, str, bool]],
+    Basis,
+    frozenset[Break],
+    frozenset[Cause],  # without labels, which are no content
 ]
-NOTHING: Content = ({}, frozenset(), Basis("", "", "", "", ""), frozenset())
+NOTHING: Content = ({}, frozenset(), Basis("", "", "", "", ""), frozenset(), frozenset())
 
 
 class Broken(AssertionError):
@@ -62,10 +77,11 @@ class History:
         """A few schedules: new numbers, or only another status, or another grid; sometimes areas,
         the basis, keys that end, or a replacement of everything."""
         pick, base = self.random.choice, max(set(self.copies) - self.withdrawn)
-        cells, listed, basis, broken = self.copies[base]
+        cells, listed, basis, broken, counted = self.copies[base]
         handed = {}
         for _ in range(self.random.randrange(1, 8)):
-            key = Key(pick("ABC"), pick("fm"), str(2000 + self.random.randrange(4)), "deaths")
+            year, cause = str(2000 + self.random.randrange(4)), pick(("", "", "x", "y"))
+            key = Key(pick("ABC"), pick("fm"), year, "deaths", cause)
             grid = pick(GRIDS) if self.random.random() < 0.15 else GRIDS[0]
             numbers = np.array([float(self.random.randrange(3)) for _ in grid.starts])
             handed[key] = Vector(pick(("provisional", "final")), grid, numbers)
@@ -96,6 +112,17 @@ class History:
                 if self.random.random() < 0.1
             ),
             ended_breaks=tuple(one for one in broken if self.random.random() < 0.1),
+            causes=tuple(
+                Cause(code, pick(("", "a name")), pick(("", "x")) if code == "y" else "", ranges)
+                for code in "xyz"
+                for ranges in (pick(((), ("A00",), ("A00", "B00-B99"))),)
+                if code == "x" or self.random.random() < 0.3
+            )
+            if self.random.random() < 0.4
+            else (),
+            ended_causes=frozenset(
+                one.code for one in counted if one.code != "x" and self.random.random() < 0.1
+            ),
         )
 
     def commit(self, change: Change) -> None:
@@ -123,7 +150,16 @@ class History:
             places.pop((one.area, one.period, one.kind, one.cause), None)
         for one in change.breaks:
             places[one.area, one.period, one.kind, one.cause] = one
-        return cells, frozenset(tree.values()), change.basis, frozenset(places.values())
+        listed = {one.code: one for one in stood[4] if one.code not in change.ended_causes} | {
+            one.code: replace(one, label="") for one in change.causes
+        }
+        return (
+            cells,
+            frozenset(tree.values()),
+            change.basis,
+            frozenset(places.values()),
+            frozenset(listed.values()),
+        )
 
     def fail(self, change: Change, monkeypatch: pytest.MonkeyPatch) -> None:
         def failing(*_arguments: object) -> Iterator[Any]:
@@ -132,7 +168,9 @@ class History:
 
         with monkeypatch.context() as patch:
             patch.setattr(
-                rows, self.random.choice(("schedules", "areas", "basis", "breaks")), failing
+                rows,
+                self.random.choice(("schedules", "areas", "basis", "breaks", "causes")),
+                failing,
             )
             with pytest.raises(Failure):
                 self.write(change)
@@ -167,15 +205,19 @@ class History:
             frozenset((area.code, area.parent, area.delivered) for area in tree),
             edition.basis,
             frozenset(breaks.listing(self.session, self.code, number)),
+            frozenset(
+                replace(one, label="") for one in causes.listing(self.session, self.code, number)
+            ),
         )
 
 
 def digest(content: Content) -> str:
-    cells, tree, basis, broken = content
+    cells, tree, basis, broken, counted = content
     return digests.of_edition(
         [
             digests.of_basis(basis),
             *map(digests.of_break, broken),
+            *map(digests.of_cause, counted),
             *(digests.of_area(Area(code, "", *rest)) for code, *rest in tree),
             *(
                 digests.of_schedule(
