@@ -271,7 +271,10 @@ def _beside(
     items, size = rows.items, len(rows.items)
     found = np.unique(rows.item[known])
     for one in found[items.beside[found]].tolist():
-        inside = np.isin(key % size, items.members(one, found))
+        members = items.members(one, found)
+        if not members.size:
+            continue
+        inside = np.isin(key % size, members)
         cells, parts = _added(key[inside] // size, value[inside])
         own = at % size == one
         beside = np.nan_to_num(_found(cells, parts, at[own] // size))

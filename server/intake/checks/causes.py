@@ -44,10 +44,10 @@ class CauseSums:
 
     @property
     def parted(self) -> Flags:
-        """Cells of areas, sexes and years that have deaths by cause, [cell]."""
+        """Cells of areas, sexes and years that have deaths by cause and age, [cell]."""
         by_cause = self.by_cause
-        place = by_cause.cells.place
-        return np.isin(place, place[by_cause.cell[by_cause.deaths > 0]])
+        place, counts = by_cause.cells.place, by_cause.cell[by_cause.deaths > 0]
+        return np.isin(place, place[counts[by_cause.at_ages[counts]]])
 
 
 def _off(sums: CauseSums, differing: Flags, kept: Flags) -> Iterator[Fault]:

@@ -3,6 +3,7 @@
 from collections.abc import Callable
 
 from server.intake.parsing import Handed
+from tests.server.intake.cause_cases import MAPPED_CASES
 from tests.server.intake.form_cases import COLUMN_CASES, FORM_CASES, WORKED_OUT_CASES, Case
 from tests.server.intake.tables import (
     births,
@@ -62,6 +63,7 @@ CASES = (
     Case("bad_provisional_year", _mapped(provisional_years=("14",))),
     Case("bad_area_setting", _mapped(area="", only_area="north east")),
     *COLUMN_CASES,
+    *MAPPED_CASES,
     Case("area_names_differ", lambda: [_named("South shore", area="area")]),
     Case(
         "wholes_differ",

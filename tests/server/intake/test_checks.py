@@ -13,6 +13,7 @@ from server.intake.problems import Problem
 from server.intake.standing import Standing
 from server.store.records import Area, Key
 from tests.server.intake.cases import CASES, ONE, SOUND, WOMEN, Case
+from tests.server.intake.cause_cases import CAUSE_CASES
 from tests.server.intake.doubts import DATA_CASES
 from tests.server.intake.list_cases import BASIS_CASES, LIST_CASES
 from tests.server.intake.tables import (
@@ -29,7 +30,7 @@ from tests.server.intake.tables import (
 
 HERE = Path(__file__).parent
 SENTENCES: dict[str, str] = json.loads((HERE / "sentences.json").read_text(encoding="utf-8"))
-EVERY = (*CASES, *DATA_CASES, *LIST_CASES, *BASIS_CASES)
+EVERY = (*CASES, *DATA_CASES, *LIST_CASES, *BASIS_CASES, *CAUSE_CASES)
 
 
 def problems(*files: Handed) -> list[Problem]:
