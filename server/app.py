@@ -29,6 +29,7 @@ from server.results.questions import BadAddress
 from server.results.series import TooLarge
 from server.routes import ROUTERS
 from server.routes.asking import Elsewhere, NoSuchPage
+from server.sentences.care import help_line, helped_by
 from server.sentences.text import _, language, n_, signs, speaking
 from server.store import errors
 from server.store.connect import Session, make_engine, sessions
@@ -99,7 +100,7 @@ def create_app(
         app.include_router(router)
     _errors(app)
     app.add_middleware(Guard, limit=config.upload_limit, refuse=_refused, failed=_failed)
-    app.add_middleware(_Speaking, code=config.language)
+    app.add_middleware(_Speaking, code=config.language, help_line=config.help_line)
     return app
 
 
@@ -119,6 +120,7 @@ def _web() -> Web:
         build=build(),
         language=language,
         error_page=error_page.build,
+        help_line=help_line,
     )
 
 
@@ -243,11 +245,11 @@ def _told(
 
 
 class _Speaking:
-    """Everything inside speaks the language of the settings."""
+    """Everything inside speaks the language of the settings, and names their help line."""
 
-    def __init__(self, app: ASGIApp, code: str) -> None:
-        self.app, self.code = app, code
+    def __init__(self, app: ASGIApp, code: str, help_line: str) -> None:
+        self.app, self.code, self.help_line = app, code, help_line
 
     async def __call__(self, scope: Scope, receive: Receive, send: Send) -> None:
-        with speaking(self.code):
+        with speaking(self.code), helped_by(self.help_line):
             await self.app(scope, receive, send)

@@ -13,6 +13,7 @@ VARIABLES: dict[str, tuple[Callable[[str], object], str]] = {
     "port": (int, "port to serve on"),
     "upload_limit": (int, "largest upload, bytes"),
     "language": (str, "language of the pages"),
+    "help_line": (str, "where readers of pages on suicide, overdose or violence find help"),
     "work_seconds": (int, "longest time that reading and checking an upload may take, seconds"),
     "work_megabytes": (int, "most memory that reading and checking an upload may take, MB"),
 }
@@ -28,6 +29,7 @@ class Config:
     port: int = 8000
     upload_limit: int = 60_000_000
     language: str = "en"
+    help_line: str = ""
     work_seconds: int = 600
     work_megabytes: int = 2_000
 

@@ -38,6 +38,7 @@ __all__ = [
     "OVERLAPS",
     "BadAddress",
     "BadValue",
+    "CausesQuestion",
     "ComparisonQuestion",
     "CurvesQuestion",
     "Items",
@@ -98,6 +99,46 @@ class CurvesQuestion(PopulationYearQuestion):
     """Which curve lies behind the death rates? One area, sex and year."""
 
     view: ClassVar[str] = "curves"
+
+
+@dataclass(frozen=True, slots=True)
+class CausesQuestion:
+    """Of what do people die here? One area, sex and year; one cause is followed through the years,
+    and deaths before 75 of those counted as avoidable are added up."""
+
+    view: ClassVar[str] = "causes"
+
+    of: PopulationYear
+    cause: str = ""  # code of the one followed; empty: the one that costs most
+    avoidable: tuple[str, ...] = ()  # codes of those the reader counts as avoidable
+    causes: CauseChoice | None = None  # how deaths by cause are shown; None: not spelled
+    figures: str = "released"
+    settings: str = DEFAULT_SETTINGS
+
+    @classmethod
+    def parse(cls, items: Items) -> Self:
+        once = ("cause", *CAUSE_KEYS, "figures", "settings")
+        keys = Keys(items, populations=("of",), once=once, many=("avoidable",))
+        avoidable = {keys.code("avoidable", text) for text in keys.all("avoidable")}
+        return cls(
+            keys.population("of"),
+            keys.code("cause", found) if (found := keys.one("cause")) else "",
+            tuple(sorted(avoidable)),
+            keys.causes(),
+            keys.figures(),
+            keys.settings(),
+        )
+
+    def completed(self) -> Self:
+        """With the choices that an address left out."""
+        return replace(self, causes=self.causes or CauseChoice())
+
+    def canonical(self) -> str:
+        pairs = [("of", self.of.code)]
+        pairs += [("cause", self.cause)] if self.cause else []
+        pairs += [("avoidable", code) for code in self.avoidable]
+        pairs += self.causes.pairs if self.causes else []
+        return urlencode([*pairs, ("figures", self.figures), ("settings", self.settings)])
 
 
 @dataclass(frozen=True, slots=True)

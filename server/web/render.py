@@ -52,6 +52,7 @@ class Web:
     build: Build
     language: Callable[[], str]
     error_page: Callable[[Problem], Shown]
+    help_line: Callable[[], str] = str  # what else of the settings pages say
     bodies: Bodies = field(default_factory=Bodies)
 
 
@@ -76,7 +77,7 @@ def respond(
     web = of(request)
     asked = asked_block(request) if form == "html" else ""
     place = (request.url.path, request.url.query, asked)
-    tag = etag((*place, *tag_parts, web.build.digest, web.language()))
+    tag = etag((*place, *tag_parts, web.build.digest, web.language(), web.help_line()))
     headers = {"ETag": tag, "Cache-Control": PINNED, "Vary": VARY}
     if fresh(request.headers.get("if-none-match"), tag):
         return Response(status_code=304, headers=headers)

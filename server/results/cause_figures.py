@@ -1,0 +1,234 @@
+"""Of what people die in one area, sex and year: every figure that a cause of death has."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+
+import numpy as np
+from scipy.special import ndtri
+
+from engine import indicators
+from engine import settings as named
+from engine.ages import Array
+from engine.causes import decrements, deletion, losses, rates
+from engine.causes.counts import CauseCounts
+from engine.causes.number import CauseNumber
+from engine.causes.number import estimates as by_cause
+from engine.estimates import Estimate
+from engine.indicator import Indicator
+from engine.panel import Panel
+from engine.settings import Settings, span
+from server.results.cause_course import Course, course
+from server.results.causes import APPLIED, CAUSES, CauseChoice, Causes, Listed
+from server.results.holdings import Holdings, NotInEdition, holdings
+from server.results.loading import Beside, Found, Loaded, assembled, needed
+from server.results.questions import CausesQuestion, PopulationYear
+from server.results.releasing import released
+from server.results.revision import Moved, moved
+from server.results.targets import Reached, reached
+from server.sentences import names
+from server.sentences.text import _
+from server.store.connect import Session
+from server.store.heading import Heading
+from server.store.records import Cause
+
+NUMBERS: tuple[CauseNumber, ...] = (*decrements.FAMILY, *losses.FAMILY, deletion.GAIN)
+RATES: tuple[Indicator, ...] = tuple(
+    indicators.find(key) for key in ("cdr", "asr_esp2013", "asr75_esp2013", "yll75", "yll_ref")
+)
+OF_ALL = tuple(indicators.find(key) for key in ("e0", "edagger", "H", "75q0")) + RATES
+PREMATURE = 75  # deaths before this age
+
+
+@dataclass(frozen=True, slots=True)
+class CauseFigures:
+    """One population-year by cause. Numbers of causes are [cause], in the order of `causes`."""
+
+    heading: Heading
+    holdings: Holdings
+    question: CausesQuestion
+    settings: Settings
+    loaded: Loaded
+    held: Causes  # as the address asks for them
+    leaves: Causes  # the causes without parts
+    deaths: rates.CauseShare
+    estimates: Mapping[str, Estimate]  # by key of number or rate
+    all: Mapping[str, Estimate]  # the same of all causes, no batch axes
+    lost: Array  # [cause, age] years lost per death by cause and age; they add up to e-dagger
+    targets: tuple[Reached, ...]
+    course: Course | None  # one cause through the years
+    moved: Moved | None
+
+    @property
+    def of(self) -> PopulationYear:
+        return self.question.of
+
+    @property
+    def causes(self) -> tuple[Cause, ...]:
+        return self.held.list
+
+    @property
+    def panel(self) -> Panel:
+        return self.loaded.panel
+
+    @property
+    def period(self) -> str:
+        """The year, or the years added up."""
+        return names.years(span(self.of.period, self.settings.years))
+
+    @property
+    def name(self) -> str:
+        """The area's name."""
+        return self.holdings.name(self.of.area)
+
+    @property
+    def readable(self) -> bool:
+        """Whether years lost per death are known."""
+        return bool(np.isfinite(self.all["edagger"].value))
+
+    @property
+    def order(self) -> tuple[int, ...]:
+        """Places of the causes that somebody died of: by years lost where these are known, else by
+        deaths; the most first."""
+        deaths = self.deaths.deaths
+        by = self.estimates["edagger"].value if self.readable else deaths
+        some = [at for at in range(len(self.causes)) if deaths[at] > 0]
+        return tuple(sorted(some, key=lambda at: (-float(by[at]), at)))
+
+    @property
+    def leading(self) -> tuple[int, ...]:
+        """The same without deaths of no known cause."""
+        known = ("natural", "external", "undetermined")
+        return tuple(at for at in self.order if self.causes[at].kind in known)
+
+
+def cause_figures(session: Session, heading: Heading, question: CausesQuestion) -> CauseFigures:
+    """Load it and read off every figure. NotInEdition where there are no deaths by cause."""
+    collection, number = heading.collection.code, heading.edition.number
+    settings, choice = named.find(question.settings), question.causes or CauseChoice()
+    held = holdings(session, collection, number)
+    held.require(question.of)
+    if not held.causes:
+        raise NotInEdition(no_causes())
+    course_of = _years(held, question.of, settings)
+    beside = replace(Beside.of(settings, held.areas), causes=choice)
+    cells = released(session, collection, number, needed(course_of, beside), question.figures)
+    listed = Listed(
+        held.causes,
+        tuple(one for one in held.breaks if one.cause and one.ratio is not None)
+        if choice.ratios == APPLIED
+        else (),
+    )
+    found = assembled(cells, course_of, beside, listed)
+    fine = (
+        beside if choice.level == CAUSES else replace(beside, causes=replace(choice, level=CAUSES))
+    )
+    leaves = found if fine is beside else assembled(cells, [question.of], fine, listed)
+    if question.of not in found:
+        raise held.lacks(question.of, settings.years)
+    loaded, own = found[question.of], found[question.of].causes
+    if own is None or (finest := leaves[question.of].causes) is None:
+        raise NotInEdition(_not_by_cause(heading, question))
+    panel = loaded.panel
+    made = CauseFigures(
+        heading=heading,
+        holdings=held,
+        question=question,
+        settings=settings,
+        loaded=loaded,
+        held=own,
+        leaves=finest,
+        deaths=rates.deaths_and_shares(own.counts, settings),
+        estimates=_estimates(panel, own, settings),
+        all=indicators.estimates(OF_ALL, panel, settings),
+        lost=losses.years_lost(panel, own.counts, settings),
+        targets=reached(panel, finest.counts, finest.list, settings),
+        course=None,
+        moved=_moved(session, heading, question, beside, settings),
+    )
+    return replace(made, course=_course(made, found))
+
+
+def _years(held: Holdings, of: PopulationYear, settings: Settings) -> list[PopulationYear]:
+    """The one asked for, and the same area and sex in every year that the edition holds."""
+    others = [replace(of, period=period) for period in held.periods]
+    return [of, *(one for one in others if one != of and held.all_of(one, settings.years))]
+
+
+def _estimates(panel: Panel, own: Causes, settings: Settings) -> dict[str, Estimate]:
+    """Every number of every cause, its interval with the errors of the ratios applied."""
+
+    def read(counts: CauseCounts) -> dict[str, Estimate]:
+        found = by_cause(NUMBERS, panel, counts, settings)
+        return found | rates.rates_by_cause(RATES, panel, counts, settings)
+
+    found = read(own.counts)
+    for shift in own.shifts if own.shifts is not None else ():
+        higher = read(replace(own.counts, deaths=np.maximum(own.counts.deaths + shift, 0.0)))
+        found = {
+            key: _wider(one, higher[key].value - one.value, settings.level)
+            for key, one in found.items()
+        }
+    return found
+
+
+def _wider(one: Estimate, error: Array, level: float) -> Estimate:
+    """With one more standard error, independent of chance in deaths."""
+    out = np.nan_to_num(error)
+    far = float(ndtri((1 + level) / 2)) * out
+    return replace(
+        one,
+        low=one.value - np.hypot(one.value - one.low, far),
+        high=one.value + np.hypot(one.high - one.value, far),
+        se=np.hypot(one.se, out),
+    )
+
+
+def _course(made: CauseFigures, found: Found) -> Course | None:
+    """Of the cause asked for, or that which costs most."""
+    codes = [cause.code for cause in made.causes]
+    if made.question.cause in codes:
+        at = codes.index(made.question.cause)
+    elif made.leading:
+        at = made.leading[0]
+    else:
+        return None
+    return course(made.holdings, made.of, made.causes[at], found, made.settings)
+
+
+def _moved(
+    session: Session,
+    heading: Heading,
+    question: CausesQuestion,
+    beside: Beside,
+    settings: Settings,
+) -> Moved | None:
+    def life_expectancy(newer: Found) -> float:
+        loaded = newer.get(question.of)
+        if loaded is None:
+            return np.nan
+        one = indicators.find("e0")
+        return float(indicators.estimate(one, loaded.panel, settings).value)
+
+    bare = replace(beside, causes=None)
+    return moved(session, heading, [question.of], bare, life_expectancy, figures=question.figures)
+
+
+def no_causes() -> str:
+    """What is said of an edition without causes of death."""
+    return _(
+        "This edition holds no deaths by cause. Causes come with a file of deaths that has a column"
+        " of them."
+    )
+
+
+def _not_by_cause(heading: Heading, question: CausesQuestion) -> str:
+    if heading.policy is not None and question.figures == "released":
+        return _(
+            "Under the policy of this collection deaths by cause are not released. The office sees"
+            " them with figures=full."
+        )
+    return _(
+        "This edition holds no deaths by cause of {code} for all the years asked for. Choose"
+        " another area, sex or year.",
+        code=question.of.code,
+    )
