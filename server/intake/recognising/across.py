@@ -1,4 +1,4 @@
-"""Wide tables: headings that are ages, sexes, years, or several of these at once."""
+"""Wide tables: headings that are ages, sexes, years, or several of these at once, or causes."""
 
 import re
 from collections.abc import Callable, Iterator, Sequence
@@ -7,6 +7,7 @@ from itertools import combinations, pairwise
 
 from server.intake.folding import folded
 from server.intake.labels import read_age, read_sex, read_year
+from server.intake.recognising.causes import are_causes, is_cause
 from server.intake.recognising.names import is_rate, named, number_named
 
 KINDS = ("year", "sex", "age", "number")  # a heading says each at most once
@@ -20,7 +21,7 @@ _COUNTED = ("deaths", "population", "births", "stillbirths", "neonatal_deaths")
 class Across:
     """Which headings carry values: as `across` and `across_columns` of a form."""
 
-    fields: tuple[str, ...]  # year, sex, age, number
+    fields: tuple[str, ...]  # year, sex, age, number; or cause alone
     columns: tuple[tuple[str, ...], ...]  # a heading, and its value in each field
 
 
@@ -111,6 +112,9 @@ def every_across(columns: Sequence[str], numeric: Callable[[str], bool]) -> tupl
         said = {tuple(map(folded, row[1:])) for row in taken}
         if len(taken) > 1 and len(said) == len(taken):  # two that say the same mean something else
             ways.append(Across(signature, taken))
+    causes = [one for one in dict.fromkeys(columns) if one and is_cause(one) and numeric(one)]
+    if are_causes(causes):
+        ways.append(Across(("cause",), tuple((one, one) for one in causes)))
     return tuple(sorted(ways, key=lambda way: (-len(way.columns), len(way.fields), way.fields)))
 
 

@@ -5,9 +5,10 @@ from dataclasses import dataclass, replace
 
 from server.intake.areas import is_code
 from server.intake.labels import read_age, read_sex, read_status, read_year
-from server.intake.mapping import COLUMNS, NUMBERS, ROLES, Mapping, numbers_of
+from server.intake.mapping import COLUMNS, NUMBERS, OF_CAUSES, ROLES, Mapping, numbers_of
 from server.intake.reading import Reading
 from server.intake.recognising.across import Across, every_across, number_of
+from server.intake.recognising.causes import are_causes, is_cause
 from server.intake.recognising.marks import is_number
 from server.intake.recognising.names import is_count, is_rate, named, suggests
 
@@ -72,6 +73,7 @@ def fields_of(role: str) -> tuple[str, ...]:
     """The fields a file of this role may fill."""
     numbers = set(NUMBERS) - set(numbers_of(role))
     skipped = numbers | ({"age"} if role == "births" else set())
+    skipped |= set() if role in OF_CAUSES else {"cause"}
     return tuple(field for field in COLUMNS if field not in skipped)
 
 
@@ -90,6 +92,7 @@ def recognise(reading: Reading, role: str, wide: tuple[str, ...] | None = None) 
     rest = [column for column in names if column not in found]
     said = {column: _by_heading(column, fields, reading.values(column)) for column in rest}
     found |= _once_each({column: known for column, known in said.items() if known})
+    _codes_of_causes(reading, fields, found)
     _names_are_no_codes(reading, found)
     for column in rest:
         if column not in found and (known := _by_values(column, reading, fields, found)):
@@ -155,6 +158,8 @@ def _by_values(
     for field, looks in _LOOKS.items():
         if field in fields and field not in taken and looks(reading.values(column)):
             return Recognised(column, field, "likely", BY_VALUES)
+    if "cause" in fields and "cause" not in taken and _causes(reading, column):
+        return Recognised(column, "cause", "likely", BY_VALUES)
     return None
 
 
@@ -196,6 +201,24 @@ def _unused(column: str, fields: tuple[str, ...]) -> Recognised:
     else:
         why = OTHER_COUNT if says in NUMBERS else NOT_NEEDED
     return Recognised(column, "", "not used", why)
+
+
+def _causes(reading: Reading, column: str) -> bool:
+    """Whether a column holds causes; the whole file is read only where its first rows may."""
+    first = all(map(is_cause, filter(None, reading.values(column))))
+    return first and are_causes(reading.distinct(column))
+
+
+def _codes_of_causes(
+    reading: Reading, fields: tuple[str, ...], found: dict[str, Recognised]
+) -> None:
+    """A column headed as codes, or names, whose values are causes is no area, nor one too many."""
+    if "cause" not in fields or "cause" in {known.field for known in found.values()}:
+        return
+    for column, known in found.items():
+        if known.field in ("area", "area_name", "") and _causes(reading, column):
+            found[column] = Recognised(column, "cause", "likely", BY_VALUES)
+            return
 
 
 def _names_are_no_codes(reading: Reading, found: dict[str, Recognised]) -> None:

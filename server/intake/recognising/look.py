@@ -4,10 +4,13 @@ from collections.abc import Mapping as Mapped
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 
+from server.intake.causes.lists import CAUSE_LISTS
+from server.intake.causes.placing import by_cause
 from server.intake.forms.units import suggested
 from server.intake.mapping import COLUMNS, LISTS, Form, Mapping, numbers_of
 from server.intake.reading import Reading, proposed, read
 from server.intake.recognising.across import Across
+from server.intake.recognising.causes import Fallen, fallen
 from server.intake.recognising.columns import (
     Recognised,
     counted,
@@ -18,7 +21,7 @@ from server.intake.recognising.columns import (
 )
 from server.intake.recognising.kinds import kind
 from server.intake.recognising.marks import Marks, marks
-from server.intake.recognising.noticing import Noticed, notice
+from server.intake.recognising.noticing import Noticed, notice, texts_of
 
 NOTHING, PLAIN = Noticed(), Marks()
 CUT = ("encoding", "delimiter", "sheet")  # of a form: with another of these all else is new
@@ -39,6 +42,7 @@ class Said:
     rate_is: str = ""
     sex_codes: tuple[tuple[str, str], ...] = ()
     signs: tuple[tuple[str, str], ...] = ()  # texts in place of numbers, and what they mean
+    cause_list: str = ""  # one of CAUSE_LISTS
 
 
 @dataclass(frozen=True, slots=True)
@@ -63,7 +67,9 @@ class Looked:
     numbers: tuple[str, ...] = ()  # those that the file holds under this mapping
     units: tuple[tuple[str, str], ...] = ()  # numbers whose unit is asked, and the one proposed
     signs: tuple[str, ...] = ()  # texts in place of numbers, whose meaning is asked
-    # questions without an answer: kind, marks, signs, units, sexes, number, rate_is
+    by_cause: bool = False  # so that its list of causes is asked
+    fallen: Fallen | None = None  # how its causes fall into the list that was chosen
+    # questions without an answer: kind, marks, signs, units, sexes, number, rate_is, cause_list
     open: tuple[str, ...] = ()
     changed: bool = False  # what was said made another table of it: its columns want a look
     before: Before | None = None  # whose mapping was taken over
@@ -172,6 +178,7 @@ def said_in(mapping: Mapping, role: str) -> Said:
         rate_is=mapping.rate_is,
         sex_codes=mapping.sex_codes,
         signs=mapping.signs,
+        cause_list=mapping.cause_list,
     )
 
 
@@ -195,6 +202,7 @@ def _mapped(reading: Reading, role: str, said: Said) -> Mapping:
         rate_is=said.rate_is,
         sex_codes=said.sex_codes,
         signs=said.signs,
+        cause_list=said.cause_list if said.cause_list in CAUSE_LISTS else "",
     )
 
 
@@ -213,6 +221,8 @@ def _looked(reading: Reading, role: str, mapping: Mapping, said: Said | None) ->
     stated = tuple(unit for unit in mapping.units if unit[0] in told or unit[1] != "1")
     mapping = replace(mapping, units=stated)
     signs = reading.signs([column for each in numbers.values() for column in each])
+    parted = by_cause(role, mapping)
+    mapping = replace(mapping, cause_list=mapping.cause_list if parted else "")
     answered = dict(mapping.sex_codes)
     missing = {
         "kind": not (kind(reading).role or (said and said.kind)),
@@ -221,6 +231,7 @@ def _looked(reading: Reading, role: str, mapping: Mapping, said: Said | None) ->
         "number": bool(mapping.form.across) and "" in numbers,
         "units": bool(told - {number for number, _ in stated}),
         "rate_is": "rate" in numbers and not mapping.rate_is,
+        "cause_list": parted and not mapping.cause_list,
         "sexes": any(code.asked and code.text not in answered for code in noticed.sexes),
     }
     return Looked(
@@ -234,6 +245,8 @@ def _looked(reading: Reading, role: str, mapping: Mapping, said: Said | None) ->
         numbers=tuple(number for number in numbers if number),
         units=units,
         signs=signs,
+        by_cause=parted,
+        fallen=fallen(texts_of(reading, mapping, "cause"), mapping.cause_list) if parted else None,
         open=tuple(question for question, is_open in missing.items() if is_open),
     )
 

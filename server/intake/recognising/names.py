@@ -61,6 +61,20 @@ NAMES = {
     "deaths 0 27 days|deces neonatals|neonatale sterbefalle|muertes neonatales|obitos neonatais",
     "status": "status|state of the figures|statut|estado de los datos|stand der daten|stato|"
     "statuscode",
+    "cause": "cause|causes|cause of death|causes of death|underlying cause|"
+    "underlying cause of death|underlying cause code|cause code|cause of death code|code of cause|"
+    "cause no|cause number|icd|icd 10|icd10|icd code|icd 10 code|icd10 code|icd 9|icd 9 code|"
+    "underlying cause icd 10|cause of death icd 10|"
+    "cause de deces|causes de deces|cause initiale|cause initiale de deces|code cim|cim|cim 10|"
+    "cim10|todesursache|todesursachen|todesursache icd|todesursache icd 10|grundleiden|"
+    "icd schlussel|icd 10 code|causa|causas|causa de muerte|causas de muerte|causa de defuncion|"
+    "causa basica|causa basica de defuncion|cie|cie 10|codigo cie|causa de morte|causa de obito|"
+    "causa do obito|causa basica do obito|causa da morte|cid|cid 10|codigo cid|causa di morte|"
+    "cause di morte|causa iniziale|causa iniziale di morte|doodsoorzaak|doodsoorzaken|"
+    "primaire doodsoorzaak|onderliggende doodsoorzaak|dodsarsag|dodsaarsag|dodsarsager|"
+    "tilgrundliggende dodsarsag|dodsarsak|dodsarsaker|underliggende dodsarsak|dodsorsak|"
+    "dodsorsaker|underliggande dodsorsak|przyczyna|przyczyna zgonu|przyczyny zgonow|"
+    "wyjsciowa przyczyna zgonu|kod icd",
 }
 COUNTS = (  # name a number without saying of what
     "count|number|n|value|total|obs value|nombre|effectif|valeur|anzahl|wert|numero|cantidad|valor|"
@@ -73,7 +87,12 @@ RATES = (
     "quoziente|probabilita|cijfer|kans|kvotient|kvot|wskaznik|wspolczynnik"
 )
 _NUMBERS = ("deaths", "population", "births", "stillbirths", "neonatal_deaths")
-_ALONE = ("area", "area_name", "status")  # too common a word to be looked for inside a heading
+_ALONE = (
+    "area",
+    "area_name",
+    "status",
+    "cause",
+)  # too common a word to be looked for inside a heading
 _NOT = re.compile(
     r"\b(?:birth|naissance|geburt|nacimiento|nascimento|nascita|geboorte|urodzenia)\b"
 )
