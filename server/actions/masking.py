@@ -43,7 +43,14 @@ def mask_of(session: Session, change: Change) -> Masked | None:
     otherwise = _shown_otherwise(session, change.collection, policy.number, trees, history)
     base = {} if change.replace or not change.base else _held(history, change.base)
     cells = {key: cell for key, cell in base.items() if key not in change.ended}
-    made = mask(change.areas, cells | dict(change.cells), policy.terms, earlier, otherwise)
+    made = mask(
+        change.areas,
+        cells | dict(change.cells),
+        policy.terms,
+        earlier,
+        otherwise,
+        secret=policies.secret(session, change.collection, 1),
+    )
     kept, left = dict(made.mask), dict(made.unprotected)
     if not whole and change.base:
         stays = before[change.base]
@@ -72,8 +79,9 @@ def keep(
     masks.write(session, change.collection, number, policy.number, masked.kept, at=at)
 
 
-def masks_under(session: Session, collection: str, terms: Terms) -> dict[int, Kept]:
-    """The masks of all editions as these terms would have them, by number."""
+def masks_under(session: Session, collection: str, terms: Terms, secret: str) -> dict[int, Kept]:
+    """The masks of all editions as these terms would have them, by number; `secret` is what counts
+    are rounded with."""
     numbers = sorted(one.number for one in editions.listing(session, collection))
     history = changes.versions(session, collection, max(numbers, default=0), Selection(cause=None))
     trees = changes.tree(session, collection, numbers)
@@ -82,7 +90,7 @@ def masks_under(session: Session, collection: str, terms: Terms) -> dict[int, Ke
     found: dict[int, Kept] = {}
     for number in numbers:
         cells = _held(history, number)
-        made = mask(trees[number], cells, terms, earlier, otherwise)
+        made = mask(trees[number], cells, terms, earlier, otherwise, secret=secret)
         earlier.append(Content(trees[number], cells, made.mask, made.unprotected))
         found[number] = Kept(made.mask, made.unprotected)
     return found
@@ -95,12 +103,12 @@ def _shown_otherwise(
     trees: Mapping[int, tuple[Area, ...]],
     history: Mapping[Key, tuple[changes.Held, ...]],
 ) -> list[Content]:
-    """The editions as all policies but this one showed them."""
-    others = (one.number for one in policies.listing(session, collection) if one.number != policy)
+    """The editions as all policies but this one showed them, the first policy first."""
+    others = [one for one in policies.listing(session, collection) if one.number != policy]
     return [
-        Content(trees[number], _held(history, number), kept.mask)
-        for other in others
-        for number, kept in masks.of_editions(session, collection, other).items()
+        Content(trees[number], _held(history, number), kept.mask, terms=other.terms)
+        for other in others[::-1]
+        for number, kept in masks.of_editions(session, collection, other.number).items()
     ]
 
 

@@ -4,6 +4,7 @@ import datetime as dt
 
 from server.accounts.viewer import Right, Viewer
 from server.actions.masking import masks_under
+from server.disclosure.rounding import BASES
 from server.store import collections, editions, masks, policies
 from server.store.connect import Session, transaction
 from server.store.errors import Refused, Stale
@@ -30,11 +31,21 @@ def set_policy(
             "A policy needs a note. Say why these terms; whoever reads the collection will see it."
         )
     collections.find(session, collection)
-    made = masks_under(session, collection, terms)
+    first = policies.secret(session, collection, 1)
+    secret = first or policies.new_secret()
+    made = masks_under(session, collection, terms, secret)
     with transaction(session):
-        policy = policies.write(session, collection, terms, by=by.name, note=note.strip(), at=now)
+        policy = policies.write(
+            session,
+            collection,
+            terms,
+            by=by.name,
+            note=note.strip(),
+            at=now,
+            secret="" if first else secret,
+        )
         there = {one.number for one in editions.listing(session, collection)}
-        if there != set(made):
+        if there != set(made) or (policy.number == 1) == bool(first):
             raise Stale(max(made, default=0), max(there, default=0))
         for number, kept in made.items():
             masks.write(session, collection, number, policy.number, kept, at=now)
@@ -45,7 +56,7 @@ def effect_of(session: Session, collection: str, terms: Terms) -> dict[int, Kept
     """What these terms would withhold, by edition; nothing is written. Raises: Missing, Refused."""
     _require_possible(terms)
     collections.find(session, collection)
-    return masks_under(session, collection, terms)
+    return masks_under(session, collection, terms, policies.secret(session, collection, 1) or "-")
 
 
 def _require_possible(terms: Terms) -> None:
@@ -63,6 +74,22 @@ def _require_possible(terms: Terms) -> None:
         raise Refused(
             "Zeros are {value}; they can be shown or withheld.",
             value=terms.zeros,
+        )
+    if terms.base not in (0, *BASES):
+        raise Refused(
+            "Counts cannot be rounded to {value}; the base can be {bases}, or 0 to withhold.",
+            value=terms.base,
+            bases=", ".join(str(base) for base in BASES),
+        )
+    if terms.base and (terms.persons or terms.zeros == "withheld"):
+        raise Refused(
+            "Rounded counts cannot also be withheld among few people, or where nobody died: a nil"
+            " may be a rounded count. Set the fewest people to 0 and let nil be shown."
+        )
+    if terms.causes not in ("whole", "none"):
+        raise Refused(
+            "Deaths by cause are {value}; they can be shown for the whole, or none.",
+            value=terms.causes,
         )
     if terms.coarse_below < 0:
         raise Refused(

@@ -8,8 +8,10 @@ import numpy as np
 from engine.ages import AgeGrid, Array
 from server.disclosure.blocks import SEXES, TOTAL, Block, Bools, block
 from server.disclosure.closing import Closed, close
+from server.disclosure.coarsening import coarsened
 from server.disclosure.equations import equations
 from server.disclosure.history import State, fresh_of, leaking, public_of, withheld_before
+from server.disclosure.rounding import Rounding, on_coarser, rounding
 from server.disclosure.standing_in import stand_ins
 from server.store.records import Area, Hidden, Key, Mask, Terms, Unprotected, Vector
 
@@ -21,12 +23,13 @@ PEOPLE = ("person_years", "births")
 
 @dataclass(frozen=True, slots=True)
 class Content:
-    """What an edition holds and did not show."""
+    """What an edition holds and did not show, and the terms that it was shown under."""
 
     areas: tuple[Area, ...]
     cells: Cells
     mask: Mask
     unprotected: Mapping[str, Unprotected] = field(default_factory=dict)
+    terms: Terms = field(default_factory=Terms)
 
 
 @dataclass(frozen=True, slots=True)
@@ -43,21 +46,24 @@ def mask(
     terms: Terms,
     earlier: Sequence[Content] = (),
     otherwise: Sequence[Content] = (),
+    *,
+    secret: str = "",
 ) -> Made:
     """What is withheld of an edition of these areas and counts, when `earlier` editions of the
     collection were shown as they were. A year that is as in one of them is shown as there.
-    `otherwise`: what other policies showed of the editions, which some reader may have kept."""
-    shaped = coarsened(areas, cells, terms)
-    by_period, before = _periods(shaped), [_periods(one.cells) for one in earlier]
+    `otherwise`: what other policies, the first one first, showed of the editions, which some reader
+    may have kept. `secret`: what counts are rounded with."""
+    by_period, before = _periods(cells), [_periods(one.cells) for one in earlier]
     masks = [_hidden_periods(one.mask) for one in earlier]
     shown = _shown_otherwise(otherwise)
     found: dict[Key, Hidden] = {}
     left: dict[str, Unprotected] = {}
     for period, own in sorted(by_period.items()):
+        way = way_of(period, terms, otherwise)
         states = [
             State(
                 one.areas,
-                coarsened(one.areas, part, terms),
+                part,
                 hidden.get(period, {}),
                 one.unprotected.get(period, Unprotected()),
             )
@@ -65,55 +71,68 @@ def mask(
             if (part := parts.get(period))
         ]
         made = next((one for one in states[::-1] if one.same_as(areas, own)), None)
-        if made is None:
-            others = shown.get(period, ())
-            made = _of_period(areas, period, own, terms, _distinct(states), others)
+        if made is None and way.base:
+            made = _rounded(areas, period, own, way, states, secret)
+        elif made is None:
+            made = _withheld(areas, period, own, way, states, shown.get(period, ()))
         found |= made.mask
         left |= {period: made.unprotected} if made.unprotected != Unprotected() else {}
-    for key, vector in shaped.items():
-        if vector.grid != cells[key].grid:
-            known = found.get(key, Hidden((), ()))
-            found[key] = replace(known, starts=vector.grid.starts)
     return Made(found, left)
 
 
-def coarsened(areas: Iterable[Area], cells: Cells, terms: Terms) -> Cells:
-    """Counts of areas with few people on five-year groups, and of all other parts of their wholes:
-    what a whole has more than its other parts would tell them. Everything else as it is."""
-    if not terms.coarse_below:
-        return cells
-    people: dict[tuple[str, str], float] = {}
-    for key, vector in cells.items():
-        if key.measure == "person_years":
-            place = (key.area, key.period)
-            most = float(vector.values.sum())
-            people[place] = max(people.get(place, 0.0), most if key.sex == "p" else 2 * most)
-    parts = _parts(areas)
-    whole_of = {one: whole for whole, inside in parts.items() for one in inside}
-    coarse: set[tuple[str, str]] = set()
-    for (area, period), lived in people.items():
-        if lived < terms.coarse_below:
-            top = whole_of.get(area) or area
-            coarse |= {(one, period) for one in (area, *_all_parts(parts, top))}
-    out = dict(cells)
-    for key, vector in cells.items():
-        if (key.area, key.period) in coarse:
-            starts = tuple(s for s in vector.grid.starts if s in (0, 1) or s % 5 == 0)
-            grid = AgeGrid(starts)
-            out[key] = replace(vector, grid=grid, values=vector.grid.regroup(vector.values, grid))
-    return out
+def way_of(period: str, terms: Terms, otherwise: Iterable[Content]) -> Terms:
+    """The terms that hold for a year under these: it keeps the way it was first shown in, withheld
+    or rounded, and to which base. Counts that are shown both ways tell one another."""
+    there = [one.terms for one in otherwise if any(key.period == period for key in one.cells)]
+    if not there or there[0].base == terms.base:
+        return terms
+    if there[0].base:
+        return replace(terms, base=there[0].base)
+    return [one for one in there if not one.base][-1]
 
 
-def _parts(areas: Iterable[Area]) -> dict[str, list[str]]:
-    found: dict[str, list[str]] = {}
-    for one in areas:
-        found.setdefault(one.parent, []).append(one.code)
-    return found
+def _rounded(
+    areas: tuple[Area, ...],
+    period: str,
+    cells: Cells,
+    terms: Terms,
+    states: Sequence[State],
+    secret: str,
+) -> State:
+    years = [(one.areas, one.cells) for one in _distinct(states)]
+    given = rounding(areas, period, cells, Rounding(terms.base, secret), years)
+    for key, vector in coarsened(areas, cells, terms).items():
+        hidden = given.get(key)
+        if vector.grid == cells[key].grid:
+            continue
+        if hidden is None or not hidden.rounded:
+            given[key] = _on_groups(hidden, vector)
+        else:
+            given[key] = on_coarser(hidden, cells[key].grid, vector.grid)
+    return State(areas, cells, given)
 
 
-def _all_parts(parts: Mapping[str, Sequence[str]], whole: str) -> list[str]:
-    """Parts of a whole, their parts, and so on."""
-    return [one for part in parts.get(whole, ()) for one in (part, *_all_parts(parts, part))]
+def _withheld(
+    areas: tuple[Area, ...],
+    period: str,
+    cells: Cells,
+    terms: Terms,
+    states: Sequence[State],
+    shown: Sequence[State],
+) -> State:
+    shaped = coarsened(areas, cells, terms)
+    past = [replace(one, cells=coarsened(one.areas, one.cells, terms)) for one in states]
+    made = _of_period(areas, period, shaped, terms, _distinct(past), shown)
+    coarser = {
+        key: _on_groups(made.mask.get(key), vector)
+        for key, vector in shaped.items()
+        if vector.grid != cells[key].grid
+    }
+    return replace(made, mask={**made.mask, **coarser})
+
+
+def _on_groups(hidden: Hidden | None, vector: Vector) -> Hidden:
+    return replace(hidden or Hidden((), ()), starts=vector.grid.starts)
 
 
 def _periods(cells: Cells) -> dict[str, dict[Key, Vector]]:

@@ -28,10 +28,11 @@ class Loaded:
     panel: Panel  # no batch axes
     status: str  # provisional where any part of it is
     withheld: frozenset[int] = frozenset()  # starts of its groups whose deaths only stand in
-    protected: bool = False  # something it rests on is withheld
+    protected: bool = False  # something it rests on is withheld or rounded
     births_withheld: frozenset[str] = frozenset()  # of engine.panel.BIRTHS
     estimated: bool = False  # its counts were split by shares, or worked out from rates
     causes: Causes | None = None  # where they were asked for and every year has some
+    rounded: int = 0  # the base that counts it rests on are rounded to; 0: as counted
 
     def withheld_on(self, grid: AgeGrid) -> NDArray[np.bool_]:
         """Groups of a grid it can be summed to that hold a withheld one, [age]."""
@@ -161,8 +162,13 @@ def _with(own: Loaded, whole: Loaded | None, standard: Loaded | None) -> Loaded:
     beside: dict[str, Any] = {
         name: _on(other.panel, panel.grid) for name, other in others.items() if other is not None
     }
-    protected = own.protected or any(one is not None and one.protected for one in others.values())
-    return replace(own, panel=replace(panel, **beside), protected=protected)
+    held = [own, *(one for one in others.values() if one is not None)]
+    return replace(
+        own,
+        panel=replace(panel, **beside),
+        protected=any(one.protected for one in held),
+        rounded=max(one.rounded for one in held),
+    )
 
 
 def _with_causes(
@@ -214,6 +220,7 @@ def _assembled(cells: Cells, pool: Pool) -> Loaded | None:
             protected,
             withheld,
             women.estimated or men.estimated,
+            rounded=max(women.rounded, men.rounded),
         )
     # the counts of persons may hold deaths of unknown sex: only the first-year rule is taken over
     births = np.where(np.isnan(own.panel.births), together.births, own.panel.births)
@@ -236,6 +243,7 @@ def _summed(cells: Cells, pool: Pool) -> Loaded | None:
         any(part.protected for part in found),
         frozenset().union(*(part.births_withheld for part in found)),
         any(part.estimated for part in found),
+        rounded=max(part.rounded for part in found),
     )
 
 
@@ -258,13 +266,14 @@ def _single(cells: Cells, pool: Pool, period: str) -> Loaded | None:
         replace(panel, births=np.array(counted), counted=_counted(cells, pool, period, grid)),
         _status((deaths.status, years.status)),
         frozenset({*deaths.withheld, *years.withheld}),
-        any(one is not None and bool(one.withheld) for one in (deaths, years, *births)),
+        any(bool(one.withheld or one.rounded) for one in (deaths, years, *births) if one),
         frozenset(
             name
             for name, one in zip(BIRTHS, births, strict=True)
             if one is not None and one.withheld
         ),
         deaths.estimated or years.estimated,
+        rounded=deaths.rounded,
     )
 
 

@@ -42,7 +42,10 @@ def masked(cells: Mapping[Key, Vector], protected: Protected | None) -> Cells:
 
 
 def shown(vector: Vector, hidden: Hidden) -> Vector:
-    """One schedule on the groups it is given by, its withheld numbers stood in for."""
+    """One schedule on the groups it is given by: rounded, or its withheld numbers stood in for."""
+    if hidden.rounded:
+        grid = AgeGrid(hidden.starts) if hidden.starts else vector.grid
+        return replace(vector, grid=grid, values=np.array(hidden.values), rounded=hidden.rounded)
     grid, values = vector.grid, vector.values
     if hidden.starts and hidden.starts != grid.starts:
         coarser = AgeGrid(hidden.starts)

@@ -37,7 +37,14 @@ class Kept:
     @property
     def cells(self) -> int:
         """How many counts are withheld; sums over age are none of them."""
-        return sum(age >= 0 for one in self.mask.values() for age in one.ages)
+        return sum(
+            age >= 0 for one in self.mask.values() if not one.rounded for age in one.ages
+        )
+
+    @property
+    def rounded(self) -> int:
+        """How many counts are rounded."""
+        return sum(len(one.ages) for one in self.mask.values() if one.rounded)
 
 
 @dataclass(frozen=True, slots=True)
@@ -179,7 +186,13 @@ def write(
 def packed(kept: Kept) -> bytes:
     """One spelling for each mask."""
     rows: list[list[Any]] = [
-        [*_codes(key), list(one.ages), list(one.values), list(one.starts)]
+        [
+            *_codes(key),
+            list(one.ages),
+            list(one.values),
+            list(one.starts),
+            *([one.rounded] if one.rounded else []),
+        ]
         for key, one in sorted(kept.mask.items())
     ]
     left = {period: [one.exposed, one.narrow] for period, one in sorted(kept.unprotected.items())}
@@ -196,7 +209,7 @@ def unpacked(content: bytes) -> Kept:
     """The mask in stored bytes. (Many pages ask for the same one.)"""
     stored: Lookup[str, Any] = json.loads(zlib.decompress(content))
     mask = {
-        Key(*row[:5]): Hidden(tuple(row[5]), tuple(row[6]), tuple(row[7]))
+        Key(*row[:5]): Hidden(tuple(row[5]), tuple(row[6]), tuple(row[7]), *row[8:])
         for row in stored["hidden"]
     }
     left = {period: Unprotected(*numbers) for period, numbers in stored["unprotected"].items()}

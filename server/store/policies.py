@@ -36,7 +36,9 @@ def read(text: str) -> Terms:
 
 
 def secret(session: Session, collection: str, number: int) -> str:
-    """What digests of what is released are made with, so that nobody can try guesses on them."""
+    """What digests of what is released are made with, so that nobody can try guesses on them; that
+    of the first policy is what counts are rounded with, under all of them. Empty where there is no
+    such policy."""
     row = tables.Policy
     text = session.scalar(
         select(row.terms).where(
@@ -46,8 +48,19 @@ def secret(session: Session, collection: str, number: int) -> str:
     return str(json.loads(text or "{}").get(_SECRET, ""))
 
 
+def new_secret() -> str:
+    return secrets.token_hex(16)
+
+
 def write(
-    session: Session, collection: str, terms: Terms, *, by: str, note: str, at: dt.datetime
+    session: Session,
+    collection: str,
+    terms: Terms,
+    *,
+    by: str,
+    note: str,
+    at: dt.datetime,
+    secret: str = "",
 ) -> Policy:
     """The next policy, inside a transaction; every page's tag changes with it. Raises: Missing."""
     locked = collections.lock(session, collection)
@@ -58,7 +71,7 @@ def write(
         insert(row).values(
             collection_id=locked.id,
             number=number,
-            terms=json.dumps(asdict(terms) | {_SECRET: secrets.token_hex(16)}, sort_keys=True),
+            terms=json.dumps(asdict(terms) | {_SECRET: secret or new_secret()}, sort_keys=True),
             made=at,
             by=by,
             note=note,

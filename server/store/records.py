@@ -39,6 +39,7 @@ class Vector:
     values: Array  # [age]
     estimated: bool = False  # split by shares, or worked out from rates
     withheld: tuple[int, ...] = ()  # as released: starts of groups whose number only stands in
+    rounded: int = 0  # as released: the base its numbers are rounded to; 0: as counted
 
 
 @dataclass(frozen=True, slots=True)
@@ -233,12 +234,15 @@ class Change:
 
 @dataclass(frozen=True, slots=True)
 class Terms:
-    """What may be shown of small counts."""
+    """What may be shown of small counts: those below the threshold are withheld, or all counts are
+    rounded."""
 
     threshold: int = 5  # deaths from 1 up to one less are withheld
     persons: int = 0  # cells with fewer person-years, and the deaths in them, are withheld; 0: none
     zeros: str = "shown"  # or "withheld": whether it is said that nobody died
     coarse_below: int = 0  # persons; smaller areas are given by five-year groups; 0: none
+    base: int = 0  # counts are rounded to multiples of it, and none is withheld; 0: not rounded
+    causes: str = "whole"  # deaths by cause are shown of areas that are part of none; or "none"
 
 
 @dataclass(frozen=True, slots=True)
@@ -256,9 +260,10 @@ class Policy:
 class Hidden:
     """What of one schedule is not shown, and what stands in for it in figures."""
 
-    ages: tuple[int, ...]  # starts of the groups withheld; -1: the sum over age
-    values: tuple[float, ...]  # worked out from what is shown, never the counts
+    ages: tuple[int, ...]  # starts of the groups withheld or rounded; -1: the sum over age
+    values: tuple[float, ...]  # rounded, or worked out from what is shown; never the counts
     starts: tuple[int, ...] = ()  # coarser groups it is given by; empty: its own
+    rounded: int = 0  # the base that its numbers are rounded to, all of them; 0: withheld
 
 
 Mask = Mapping[Key, Hidden]

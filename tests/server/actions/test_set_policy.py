@@ -84,9 +84,9 @@ def test_masks_are_made_beside_what_other_policies_showed(
     old = masks.of_editions(session, "isle", 1)[1].mask
     beside: list[list[Mask]] = []
 
-    def noted(*given: Any) -> Made:
+    def noted(*given: Any, **more: Any) -> Made:
         beside.append([one.mask for one in given[4]])
-        return mask(*given)
+        return mask(*given, **more)
 
     monkeypatch.setattr("server.actions.masking.mask", noted)
     set_to(session, threshold=4)

@@ -4,7 +4,8 @@ import numpy as np
 import pytest
 
 from engine.ages import AgeGrid
-from server.disclosure.masking import coarsened, mask
+from server.disclosure.coarsening import coarsened
+from server.disclosure.masking import mask
 from server.results.releasing import shown
 from server.store.records import Area, Key, Terms, Vector
 from tests.server.disclosure.counts import Cells, add
