@@ -16,6 +16,7 @@ import sys
 from collections import Counter
 from collections.abc import Callable
 from dataclasses import dataclass, field, replace
+from itertools import cycle
 
 import openpyxl
 
@@ -147,6 +148,7 @@ def answered(looked: Looked) -> Mapping:
         units=tuple(units.items()),
         rate_is=looked.mapping.rate_is or ("rate" if "rate_is" in looked.open else ""),
         sex_codes=tuple(sexes.items()),
+        signs=tuple(zip(looked.signs, cycle(("nil", "mistake", "not_available")), strict=False)),
         only_area="" if looked.mapping.area or looked.mapping.area_name else "north",
         unstated=(("sex", "spread"), ("age", "spread"), ("area", "left_out")),
     )
@@ -201,7 +203,9 @@ def _read(name: str, content: bytes) -> Parsed:
     parsed = parse([Handed("counts", name, content, mapping)])
     assert all(str(problem) for problem in parsed.problems)
     assert 0 <= parsed.sound_count <= parsed.row_count
-    assert parsed.errors or (parsed.cells and parsed.sound_count == parsed.row_count)
+    left_out = any(problem.key == "count_not_available" for problem in parsed.problems)
+    assert parsed.errors or parsed.cells or left_out
+    assert parsed.errors or parsed.sound_count == parsed.row_count
     assert Report.from_json(Report.of(parsed).to_json()) == Report.of(parsed)
     return parsed
 

@@ -74,6 +74,23 @@ def test_warnings_want_a_note_and_leave_nothing_behind_without_it(
         assert database.execute("SELECT count(*) FROM upload").fetchone() == (2,)
 
 
+def test_what_a_dash_means_must_be_said(ebbline: Ebbline, counts: Path) -> None:
+    content = counts_csv().replace(b"2001,f,0,north,21", b"2001,f,0,north,-")
+    counts.write_bytes(content)
+    told = ("hand-in", "--collection", "salt", "--counts", counts, *NEW)
+    said = ebbline(*told)
+    assert said.code == 2
+    assert "what is meant by “-” in place of a number. Say it with --sign" in said.err
+    assert "--sign -=none: expected one of nil, not-available, withheld, mistake." in (
+        ebbline(*told, "--sign=-=none").err
+    )
+    nil = ebbline(*told, "--sign=-=nil").out
+    counts.write_bytes(content.replace(b",-,", b",0,"))
+    nought = ebbline("hand-in", "--collection", "salt", "--counts", counts).out
+    digests = [said.partition("content ")[2][:12] for said in (nil, nought)]
+    assert digests[0] == digests[1] != ""
+
+
 def test_checking_alone_writes_nothing(ebbline: Ebbline, counts: Path) -> None:
     said = ebbline("hand-in", "--check-only", "--counts", counts)
     assert (said.code, said.err) == (0, "")

@@ -82,6 +82,8 @@ CASES = (
     Case("thousands_separator", _set(ONE, deaths="1,204")),
     Case("decimal_comma", _set(ONE, deaths="12,5")),
     Case("not_a_number", _set(ONE, deaths="twelve")),
+    Case("count_not_available", lambda: [_signed("not_available")]),
+    Case("count_withheld", lambda: [_signed("withheld")]),
     Case("missing_count", _set(ONE, deaths="")),
     Case("negative_count", _set(ONE, deaths="-4")),
     Case("not_finite", _set(ONE, population="inf")),
@@ -111,6 +113,11 @@ CASES = (
     Case("too_many_not_stated", lambda: [_unstated(MANY, age="spread")], "jump_of_deaths"),
     Case("many_left_out", lambda: [_unstated(MANY, age="left_out")]),
     Case("nothing_to_share_by", lambda: [_unstated(_only_unstated(), age="spread")]),
+    Case(
+        "shared_beside_unknown",
+        lambda: [_signed("not_available", {**UNKNOWN_AGE[0], "sex": "m"}, age="spread")],
+        "count_not_available",
+    ),
     Case("not_stated_twice", lambda: [_unstated(UNKNOWN_AGE * 2, age="spread")]),
     *WORKED_OUT_CASES,
     Case("infant_deaths_exceed_births", lambda: [counts(SOUND), births(46)]),
@@ -136,6 +143,12 @@ CASES = (
 def _unstated(table: list[dict[str, object]], **chosen: str) -> Handed:
     """These rows beside the sound ones, and what is to be done with what they do not state."""
     return counts(SOUND + table, unstated=tuple(chosen.items()))
+
+
+def _signed(meaning: str, *more: dict[str, object], **chosen: str) -> Handed:
+    """A dash for the deaths of one row, and what it was said to mean."""
+    table = setting(SOUND, ONE, deaths="–") + list(more)
+    return counts(table, signs=(("–", meaning),), unstated=tuple(chosen.items()))
 
 
 def _only_unstated() -> list[dict[str, object]]:

@@ -8,8 +8,9 @@ from httpx2 import Response
 from starlette.testclient import TestClient
 
 from server.intake.mapping import Mapping
+from tests.factories import counts_csv
 from tests.server.intake.workbooks import xlsx
-from tests.server.routes.test_uploads import BASIS, NEW, contents
+from tests.server.routes.test_uploads import BASIS, NEW, contents, draft
 
 AGES = ("0", "1-4", "5-9", "10+")
 DEATHS = (
@@ -223,3 +224,21 @@ def test_a_mapped_draft_shows_what_was_said(blank: TestClient, place: str) -> No
     kept = form_of(blank.get(place).text)
     for name, value in (ANSWERS | BASIS).items():
         assert kept[name] == value
+
+
+def test_what_a_dash_means_is_asked_and_nothing_is_chosen(blank: TestClient) -> None:
+    content = counts_csv().replace(b"2001,f,0,north,21", "2001,f,0,north,–".encode())
+    place = f"{draft(blank, content, code='salt')}/reading"
+    page = blank.get(place).text
+    assert "what is meant by “–” in place of a number" in page
+    assert "“–” in place of a number means" in page
+    sent = form_of(page) | BASIS
+    assert (sent["counts.sign.0"], sent["counts.sign_text.0"]) == ("", "–")
+    answer = blank.post(place, data=sent)
+    assert answer.status_code == 422
+    assert "Say what “–” in place of a number means." in answer.text
+    answer = blank.post(place, data=sent | {"counts.sign.0": "not_available"})
+    assert answer.status_code == 303, answer.text
+    told = blank.get(answer.headers["location"]).text
+    assert "said to mean not available" in told
+    assert form_of(blank.get(place).text)["counts.sign.0"] == "not_available"  # it is kept
