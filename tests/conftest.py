@@ -1,5 +1,7 @@
 """Databases for the tests: each test gets a fresh one, on SQLite and on PostgreSQL."""
 
+import datetime as dt
+import os
 import shutil
 from collections.abc import Callable, Iterator
 from contextlib import AbstractContextManager, contextmanager
@@ -10,15 +12,30 @@ from hypothesis import settings as hypothesis_settings
 from sqlalchemy import Engine, event
 from sqlalchemy.orm import Session, sessionmaker
 
+from seed_scenarios import quillmere
+from server.config import Config
 from server.store.connect import make_engine, sessions
 from server.store.migrating import migrate
 from tests import postgres
+from tests.once import once
 
 # no example is failed for its time: a machine with other work on it is slow, not wrong
 hypothesis_settings.register_profile("patient", deadline=None)
 hypothesis_settings.load_profile("patient")
 
-BOTH = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgres)]
+DATABASE = "ebbline.db"  # in a data folder
+DEMONSTRATED = dt.datetime(2026, 12, 1, 9, tzinfo=dt.UTC)
+POSTGRESQL = pytest.param("postgresql", marks=pytest.mark.postgres)
+# where the database itself can matter: its SQL, its locks, what it keeps; everything else reads
+# and writes through these
+ON_BOTH = (
+    "tests/server/actions/",
+    "tests/server/jobs/",
+    "tests/server/store/",
+    "tests/server/results/test_loading.py",
+    "tests/server/results/test_changes.py",
+    "tests/server/results/test_provisional.py",
+)
 
 # files of tests that take seconds together, by measure: the working loop leaves them out
 SLOW = {
@@ -46,6 +63,15 @@ SLOW = {
     "tests/server/store/test_histories.py",
     "tests/server/web/test_guard.py",
 }
+
+
+def pytest_generate_tests(metafunc: pytest.Metafunc) -> None:
+    """A test that names no database itself gets SQLite, or both where that can matter."""
+    named = {str(one.args[0]) for one in metafunc.definition.iter_markers("parametrize")}
+    here = metafunc.definition.path.relative_to(metafunc.config.rootpath).as_posix()
+    for name in {"db_url", "empty_url"}.intersection(metafunc.fixturenames) - named:
+        given = ["sqlite", POSTGRESQL] if here.startswith(ON_BOTH) else ["sqlite"]
+        metafunc.parametrize(name, given, indirect=True)
 
 
 def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
@@ -77,15 +103,64 @@ def postgres_one(postgres_server: str) -> Iterator[postgres.Reused]:
 
 
 @pytest.fixture(scope="session")
-def sqlite_template(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    path = tmp_path_factory.mktemp("template") / "ebbline.db"
-    migrate(f"sqlite:///{path}")
-    return path
+def shared(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """The folder of this run, the same one for every worker."""
+    mine = tmp_path_factory.getbasetemp()
+    return mine.parent if "PYTEST_XDIST_WORKER" in os.environ else mine
 
 
-@pytest.fixture(params=BOTH)
+@pytest.fixture(scope="session")
+def sqlite_template(shared: Path) -> Path:
+    return once(shared, "migrated", lambda folder: migrate(Config(data=folder).url)) / DATABASE
+
+
+@pytest.fixture(scope="session")
+def delivered(shared: Path, sqlite_template: Path) -> Path:
+    """A data folder with the first two editions of the demonstration; to be copied, not changed."""
+
+    def fill(folder: Path) -> None:
+        shutil.copy(sqlite_template, folder / DATABASE)
+        with opened(folder) as session:
+            quillmere.deliver(session, now=DEMONSTRATED)
+
+    return once(shared, "delivered", fill)
+
+
+@pytest.fixture(scope="session")
+def demonstration(shared: Path, delivered: Path) -> Path:
+    """A data folder with the whole demonstration; to be copied, not changed."""
+
+    def fill(folder: Path) -> None:
+        shutil.copytree(delivered, folder, dirs_exist_ok=True)
+        with opened(folder) as session:
+            quillmere.recount(session, now=DEMONSTRATED)
+            quillmere.protect(session, now=DEMONSTRATED)
+
+    return once(shared, "demonstration", fill)
+
+
+@contextmanager
+def opened(folder: Path) -> Iterator[Session]:
+    """A session on the database of a data folder."""
+    engine = make_engine(Config(data=folder).url)
+    with sessions(engine)() as session:
+        yield session
+    engine.dispose()
+
+
+@pytest.fixture(scope="module")
+def lasting(sqlite_template: Path, tmp_path_factory: pytest.TempPathFactory) -> Iterator[Session]:
+    """A session on a SQLite database of all tests of one file, for those that only read from it
+    what one fixture wrote."""
+    folder = tmp_path_factory.mktemp("lasting")
+    shutil.copy(sqlite_template, folder / DATABASE)
+    with opened(folder) as session:
+        yield session
+
+
+@pytest.fixture
 def empty_url(request: pytest.FixtureRequest) -> Iterator[str]:
-    """A database without tables, on either."""
+    """A database without tables."""
     if request.param == "sqlite":
         yield f"sqlite:///{request.getfixturevalue('tmp_path') / 'empty.db'}"
     else:
@@ -93,9 +168,9 @@ def empty_url(request: pytest.FixtureRequest) -> Iterator[str]:
             yield address
 
 
-@pytest.fixture(params=BOTH)
+@pytest.fixture
 def db_url(request: pytest.FixtureRequest) -> Iterator[str]:
-    """A migrated, empty database, on either."""
+    """A migrated, empty database."""
     if request.param == "sqlite":
         yield request.getfixturevalue("sqlite_url")
     else:

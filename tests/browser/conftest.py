@@ -53,10 +53,10 @@ def browser() -> Iterator[Browser]:
 
 
 @pytest.fixture(scope="session")
-def demo_site(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Site]:
+def demo_site(demonstration: Path, tmp_path_factory: pytest.TempPathFactory) -> Iterator[Site]:
     """The demonstration collection, served; only read from."""
-    site = Site(tmp_path_factory.mktemp("demo"))
-    site.start("demo")
+    site = Site(shutil.copytree(demonstration, tmp_path_factory.mktemp("demo") / "data"))
+    site.start()
     yield site
     site.stop()
 

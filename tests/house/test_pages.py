@@ -3,7 +3,9 @@ made-up language that sets each text in brackets tells."""
 
 import datetime as dt
 import re
+import shutil
 from collections.abc import Iterator
+from pathlib import Path
 
 import pytest
 from httpx2 import Response
@@ -19,7 +21,6 @@ from server.actions.receive_upload import receive_upload
 from server.app import create_app
 from server.config import Config
 from server.store.connect import make_engine, sessions
-from server.store.migrating import migrate
 from tests.house.crawl import read, walk
 
 pytestmark = pytest.mark.house
@@ -33,13 +34,14 @@ SYMBOLS = {"edagger", "median", "mode", "almanac", "ageing_rate"}  # keys, as in
 
 
 @pytest.fixture(scope="module")
-def pages(tmp_path_factory: pytest.TempPathFactory) -> Iterator[dict[str, Response]]:
+def pages(
+    demonstration: Path, tmp_path_factory: pytest.TempPathFactory
+) -> Iterator[dict[str, Response]]:
     """All pages in the made-up language: the island, and one upload with faults."""
-    config = Config(data=tmp_path_factory.mktemp("pseudo"), language="pseudo")
-    migrate(config.url)
+    folder = shutil.copytree(demonstration, tmp_path_factory.mktemp("pseudo") / "data")
+    config = Config(data=folder, language="pseudo")
     engine = make_engine(config.url)
     with sessions(engine)() as session:
-        quillmere.build(session, now=NOW)
         _hand_in_faults(session, checked=False)
         _hand_in_faults(session, checked=True)
     engine.dispose()

@@ -2,6 +2,7 @@
 
 import datetime as dt
 import itertools
+import shutil
 from collections.abc import Iterator
 from pathlib import Path
 
@@ -19,27 +20,17 @@ from server.results.questions import PopulationYear, PopulationYearQuestion, Tre
 from server.results.series import series
 from server.sentences.pieces import plain
 from server.store import areas, editions, schedules
-from server.store.connect import make_engine, sessions
 from server.store.heading import heading
-from server.store.migrating import migrate
+from tests.conftest import POSTGRESQL, opened
 
 NOW = dt.datetime(2026, 12, 1, 9, tzinfo=dt.UTC)
 YEARS = range(1999, 2024)
 
 
-def built(folder: Path) -> Iterator[Session]:
-    url = f"sqlite:///{folder / 'ebbline.db'}"
-    migrate(url)
-    engine = make_engine(url)
-    with sessions(engine)() as opened:
-        quillmere.build(opened, now=NOW)
-        yield opened
-    engine.dispose()
-
-
 @pytest.fixture(scope="module")
-def island(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Session]:
-    yield from built(tmp_path_factory.mktemp("island"))
+def island(demonstration: Path, tmp_path_factory: pytest.TempPathFactory) -> Iterator[Session]:
+    with opened(shutil.copytree(demonstration, tmp_path_factory.mktemp("island") / "data")) as one:
+        yield one
 
 
 def trend(
@@ -134,9 +125,12 @@ def test_births_stand_beside_the_basis(island: Session) -> None:
     assert counts["p"] == counts["f"] + counts["m"] > 1_000
 
 
-def test_building_again_gives_the_same_editions(island: Session, tmp_path: Path) -> None:
-    again = next(built(tmp_path))
-    digests = [edition.digest for edition in editions.listing(again, quillmere.CODE)]
+@pytest.mark.parametrize("db_url", [POSTGRESQL], indirect=True)
+def test_building_again_on_another_database_gives_the_same_editions(
+    island: Session, session: Session
+) -> None:
+    quillmere.build(session, now=NOW)
+    digests = [edition.digest for edition in editions.listing(session, quillmere.CODE)]
     assert digests == [edition.digest for edition in editions.listing(island, quillmere.CODE)]
     assert len(set(digests)) == 3
 

@@ -29,8 +29,8 @@ BREAKS = (
 )
 
 
-@pytest.fixture
-def isle(session: Session) -> Session:
+@pytest.fixture(scope="module")
+def isle(lasting: Session) -> Session:
     """Edition 1 has no breaks, edition 2 all, edition 3 all but that of coding."""
     panels = {
         f"{area}.{sex}.{year}": gompertz_panel(sex=sex, people=3e6, seed=at, level=3e-5 - 9e-7 * at)
@@ -38,10 +38,10 @@ def isle(session: Session) -> Session:
         for sex in "fm"
         for at, year in enumerate(YEARS)
     }
-    edition(session, panels)
-    edition(session, {}, breaks=BREAKS)
-    edition(session, {"north.f.2001": panels["north.f.2001"]}, note="the same again")
-    return session
+    edition(lasting, panels)
+    edition(lasting, {}, breaks=BREAKS)
+    edition(lasting, {"north.f.2001": panels["north.f.2001"]}, note="the same again")
+    return lasting
 
 
 def drawn(session: Session, number: int, *areas: str, **more: str) -> trend.TrendPage:
