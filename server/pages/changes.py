@@ -150,6 +150,7 @@ def _lead(found: Changes) -> tuple[Sentence, ...]:
     said.append(_areas(found))
     said.append(say.basis([part for part, _then, _now in found.basis]))
     said.append(say.breaks(len(found.breaks)))
+    said.append(say.by_cause(len({one.key[:3] for one in found.by_cause})))
     return tuple(sentence for sentence in said if sentence)
 
 

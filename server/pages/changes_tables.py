@@ -1,6 +1,7 @@
 """The tables of what changed between two editions."""
 
 import math
+from collections import Counter
 
 from engine import indicators
 from engine.indicators import Indicator
@@ -18,7 +19,8 @@ from server.sentences.standing import basis_dated, basis_people, basis_populatio
 from server.sentences.text import _
 from server.store.records import Area, Break
 
-FURTHER = ("statuses", "areas", "basis", "breaks")  # small tables, in the order of the page
+# small tables, in the order of the page
+FURTHER = ("statuses", "areas", "basis", "breaks", "causes")
 NOT_HELD = GapKind.NOT_AVAILABLE
 
 
@@ -32,6 +34,7 @@ def all_(found: Changes, first: str) -> tuple[Table, ...]:
         areas(found),
         basis(found),
         breaks(found),
+        causes(found),
     )
     return tuple(table for table in made if table.rows)
 
@@ -273,4 +276,26 @@ def breaks(found: Changes) -> Table:
             *_sides(found, None),
         ),
         tuple(rows),
+    )
+
+
+def causes(found: Changes) -> Table:
+    """How many areas, sexes and years have other deaths by cause, of each cause."""
+    counted = Counter(
+        (one.key.cause, one.kind) for one in found.by_cause if one.key.measure == "deaths"
+    )
+    kinds = ("added", "numbers", "groups", "marks", "dropped")
+    said = [kind for kind in kinds if any(counted[one.code, kind] for one in found.causes)]
+    return Table(
+        "causes",
+        _("Deaths by cause: areas, sexes and years that are others"),
+        (
+            Column("cause", _("cause")),
+            *(Column(kind, say.kind(kind), decimals=0) for kind in said),
+        ),
+        tuple(
+            Row((one.code, *(float(counted[one.code, kind]) for kind in said)), shown=_(one.label))
+            for one in found.causes
+            if any(counted[one.code, kind] for kind in said)
+        ),
     )

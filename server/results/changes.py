@@ -18,11 +18,11 @@ from server.results.keys import (
 )
 from server.results.releasing import FULL, masked
 from server.sentences.text import _
-from server.store import areas, breaks, changes, editions, masks, schedules
+from server.store import areas, breaks, causes, changes, editions, masks, schedules
 from server.store.connect import Session
 from server.store.errors import Missing
 from server.store.heading import Heading
-from server.store.records import Area, Break, Edition, Key, Vector
+from server.store.records import Area, Break, Cause, Edition, Key, Vector
 
 Cells = Mapping[Key, Vector]
 
@@ -160,13 +160,15 @@ class Changes:
     question: ChangesQuestion
     then: Edition
     names: dict[str, str]  # of areas of either edition, by code
-    altered: tuple[Altered, ...]
+    altered: tuple[Altered, ...]  # of all causes of death
     moved: tuple[Headline, ...]  # largest first within an indicator
     periods: tuple[frozenset[str], frozenset[str]]  # held then, held now
     others: tuple[int, ...]  # numbers of all editions, the newest first
     areas: tuple[tuple[Area | None, Area | None], ...]  # then, now: added, gone or placed elsewhere
     basis: tuple[tuple[str, str, str], ...]  # part of the basis, then, now
     breaks: tuple[tuple[Break | None, Break | None], ...]  # then, now
+    by_cause: tuple[Altered, ...] = ()
+    causes: tuple[Cause, ...] = ()  # of the lists of both, where one has any
 
     def name(self, area: str) -> str:
         return self.names.get(area, area)
@@ -200,9 +202,11 @@ def found_changes(session: Session, heading: Heading, question: ChangesQuestion)
     Missing, BadValue, NotInEdition."""
     code, now = heading.collection.code, heading.edition.number
     then = earlier(session, heading, question.since or default_since(session, heading))
-    altered = tuple(
+    differing = [
         Altered(key, *pair) for key, pair in _differing(session, code, then.number, now, question)
-    )
+    ]
+    altered = tuple(one for one in differing if not one.key.cause)
+    by_cause = tuple(one for one in differing if one.key.cause)
     trees = (areas.listing(session, code, then.number), areas.listing(session, code, now))
     moved = headlines(
         session,
@@ -225,6 +229,8 @@ def found_changes(session: Session, heading: Heading, question: ChangesQuestion)
         areas=_areas(*trees),
         basis=_basis(then, heading.edition),
         breaks=_breaks(session, code, then.number, now),
+        by_cause=by_cause,
+        causes=_causes(session, code, then.number, now) if by_cause else (),
     )
 
 
@@ -250,6 +256,13 @@ def _unlike(then: Vector | None, now: Vector | None) -> bool:
     return (then.status, then.grid, then.estimated) != (now.status, now.grid, now.estimated) or (
         not np.array_equal(then.values, now.values, equal_nan=True)
     )
+
+
+def _causes(session: Session, code: str, then: int, now: int) -> tuple[Cause, ...]:
+    """Those of the newer list in its order, then those that it lost."""
+    newer, older = (causes.listing(session, code, number) for number in (now, then))
+    kept = {cause.code for cause in newer}
+    return (*newer, *(cause for cause in older if cause.code not in kept))
 
 
 def _periods(session: Session, code: str, number: int) -> frozenset[str]:

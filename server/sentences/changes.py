@@ -213,6 +213,20 @@ def basis_part(key: str) -> str:
     }[key]
 
 
+def by_cause(places: int) -> Sentence:
+    """That deaths by cause moved; empty where none did."""
+    if not places:
+        return ()
+    return phrase(
+        n_(
+            "Deaths by cause are others in one area, sex and year.",
+            "Deaths by cause are others in {count} areas, sexes and years.",
+            places,
+            count=whole(places),
+        )
+    )
+
+
 def breaks(count: int) -> Sentence:
     if not count:
         return ()

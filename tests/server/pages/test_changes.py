@@ -16,6 +16,7 @@ from server.results.keys import PopulationYear
 from server.results.questions import PopulationYearQuestion
 from server.sentences.pieces import Sentence, plain
 from server.store.heading import heading
+from server.store.records import Cause
 from tests.factories import edition, gompertz_panel, withdrawn
 
 NORTH = PopulationYear("north", "f", "2014")
@@ -152,3 +153,20 @@ def test_contents_population_years_and_notices_lead_there(isle: Session) -> None
     assert "/c/isle/3/changes?since=2&figures=released&settings=almanac-1" in found
     first = build_contents(isle, heading(isle, "isle", 1), ContentsQuestion())
     assert not [one for one in links(first, first.questions) if one.startswith("/c/isle/1/changes")]
+
+
+def test_deaths_by_cause_that_are_others_are_counted_by_cause(session: Session) -> None:
+    women = gompertz_panel(seed=4)
+    handed = {f"north.f.{year}": women for year in (2012, 2013)}
+    list_ = (Cause("heart", "Hearts"), Cause("lungs", "Lungs"))
+    edition(session, handed, causes=list_, by_cause={"north.f.2012": {"heart": women.deaths}})
+    moved = {name: {"heart": women.deaths - 0.5 * women.deaths} for name in handed}
+    edition(session, handed, causes=list_, by_cause=moved)
+    built = page(session, 2)
+    assert "holds the same numbers as edition 1" in plain(built.answer)
+    said = [plain(sentence) for sentence in built.lead]
+    assert said == ["Deaths by cause are others in 2 areas, sexes and years."]
+    found = next(table for table in built.tables if table.key == "causes")
+    assert [column.label for column in found.columns] == ["cause", "new", "changed"]
+    assert [(row.shown, *row.cells) for row in found.rows] == [("Hearts", "heart", 1.0, 1.0)]
+    assert built.parts == ("causes",)

@@ -19,7 +19,7 @@ from server.results.keys import BadValue, PopulationYear
 from server.results.loading import load
 from server.store.errors import Missing
 from server.store.heading import heading
-from server.store.records import Area, Key
+from server.store.records import Area, Cause, Key
 from tests.factories import cells, edition, gompertz_panel
 
 YEARS = ("2012", "2013", "2014")
@@ -186,3 +186,25 @@ def test_a_year_is_counted_once_whatever_levels_hold_it() -> None:
     (held,) = yearly(parts, parts | persons, tree, flat)
     whole = persons[Key("w", "p", "2001", "deaths")].values.sum()
     assert held.deaths == (total, whole)
+
+
+HEARTS, LUNGS = Cause("heart", "Hearts"), Cause("lungs", "Lungs")
+
+
+def test_deaths_by_cause_are_told_apart_from_those_of_all_causes(session: Session) -> None:
+    women = counted()
+    hearts = {"north.f.2012": {"heart": 0.5 * women.deaths}}
+    handed = {"north.f.2012": women, "north.f.2013": women}
+    edition(session, handed, causes=(HEARTS,), by_cause=hearts)
+    moved = {"heart": 0.5 * women.deaths, "lungs": 0.25 * women.deaths}
+    once = {"north.f.2012": women}
+    edition(session, once, causes=(HEARTS, LUNGS), by_cause={"north.f.2012": moved})
+    edition(session, handed)
+    second, third = changes(session, 2), changes(session, 3)
+    assert (second.altered, second.moved) == ((), ())
+    of = {(one.key.cause, one.key.period): one.kind for one in second.by_cause}
+    assert of == {("lungs", "2012"): "added"}
+    assert second.causes == (HEARTS, LUNGS)
+    assert third.altered == ()
+    gone = {(one.key.cause, one.kind) for one in third.by_cause}
+    assert gone == {("heart", "dropped"), ("lungs", "dropped")}
