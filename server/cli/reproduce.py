@@ -53,7 +53,7 @@ def run(asked: argparse.Namespace, config: Config) -> int:
         ) from error
     given = Asked(asked.collection, asked.edition, asked.settings, asked.indicator, asked.address)
     with opened(config) as session:
-        page = reproduce.build(session, asked.file.name, content, given)
+        page = reproduce.build(session, asked.file.name, content, given, most=None)
     if asked.form == "table":
         print(plain(page.answer))
     if page.tables:

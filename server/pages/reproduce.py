@@ -17,7 +17,7 @@ from server.results.account import AccountQuestion
 from server.results.keys import BadValue
 from server.results.printed_tables import number, read
 from server.results.questions import address
-from server.results.reproducing import MOST, Found, reproduced
+from server.results.reproducing import Found, reproduced
 from server.sentences import account as account_say
 from server.sentences import names
 from server.sentences import reproduce as say
@@ -96,19 +96,20 @@ def form(session: Session) -> ReproducePage:
     )
 
 
-def build(session: Session, name: str, content: bytes, asked: Asked) -> ReproducedPage:
-    """BadValue where no table is found, or its collection, edition or settings are not known."""
+def build(
+    session: Session, name: str, content: bytes, asked: Asked, *, most: int | None = None
+) -> ReproducedPage:
+    """BadValue where no table is found, or its collection, edition or settings are not known;
+    TooLarge where it takes more than `most` looks."""
     file = read(content, name)
     of = source(session, asked.address or file.address)
     collection, stated = _stated(session, asked, of, file.said)
     figures, unknown = wanted(session, file, collection, stated, of)
-    figures, left = figures[:MOST], figures[MOST:]
-    found = reproduced(session, collection, figures, asked.figures)
+    found = reproduced(session, collection, figures, asked.figures, most=most)
     beside = cells(file, of, figures) if of else []
     counts = Counter(one.kind for one in found) + Counter({"unknown": len(unknown)})
     unlike = [one for one in beside if not one.alike]
-    lead = [say.others(len(beside) - len(unlike), len(beside))]
-    lead += [say.too_many(MOST)] if left else []
+    said = say.others(len(beside) - len(unlike), len(beside))
     tables = (
         _figures(session, collection, found),
         _unknown(unknown),
@@ -117,7 +118,7 @@ def build(session: Session, name: str, content: bytes, asked: Asked) -> Reproduc
     return ReproducedPage(
         frame=_frame(session, name, collection, stated),
         answer=say.answer(name, counts),
-        lead=tuple(sentence for sentence in lead if sentence),
+        lead=(said,) if said else (),
         tables=tuple(table for table in tables if table.rows),
         figures=bool(found),
         unknown=bool(unknown),

@@ -11,6 +11,8 @@ from server.intake.forms.lines import rows_of
 from server.intake.layout import Layout, layout
 from server.intake.mapping import Form
 from server.results.keys import BadValue
+from server.results.series import TooLarge
+from server.sentences.numbers import whole
 from server.sentences.text import _
 
 ABOUT = "about"  # the sheet of a workbook of ours that says what it is
@@ -52,7 +54,8 @@ class PrintedFile:
 
 
 def read(content: bytes, name: str) -> PrintedFile:
-    """Any form that intake can open, and JSON of ours. BadValue where no table is found."""
+    """Any form that intake can open, and JSON of ours. BadValue where no table is found,
+    TooLarge where it has more rows than can be looked up."""
     if content.lstrip()[:1] == b"{":
         return _json(content, name)
     first = layout(content, name)
@@ -78,7 +81,17 @@ def _no_table(name: str) -> BadValue:
 
 def _all_rows(of: Layout) -> list[tuple[int, tuple[str, ...]]]:
     """Heading and rows with their numbers in the file; blank ones left out."""
-    texts = rows_of(of.body.decode(errors="replace"), of.delimiter)[:MOST_ROWS]
+    texts = rows_of(of.body.decode(errors="replace"), of.delimiter)
+    if len(texts) > MOST_ROWS:
+        raise TooLarge(
+            _(
+                "{name} has {rows} rows; a table of at most {most} can be looked up. Hand in a part"
+                " of it.",
+                name=of.name,
+                rows=whole(len(texts)),
+                most=whole(MOST_ROWS),
+            )
+        )
     numbered = [(of.first - 1, of.columns), *((of.row(at), row) for at, row in enumerate(texts))]
     return [(number, row) for number, row in numbered if any(text.strip() for text in row)]
 

@@ -15,12 +15,16 @@ from server.results.headlines import figures
 from server.results.keys import PopulationYear
 from server.results.loading import Beside, load
 from server.results.printed_tables import number
+from server.results.series import TooLarge
+from server.sentences.numbers import whole
+from server.sentences.text import _
 from server.store import areas, editions
 from server.store.connect import Session
 from server.store.heading import Heading, heading
 from server.store.records import Area
 
-MOST = 5_000  # figures that are looked at
+MOST = 25_000  # looks at a figure of one edition and settings, for one answer: some five seconds
+LOST = ("astray", "cut")  # kinds that other editions and settings are asked for
 PARTED = 40  # figures whose difference is parted; the others are linked to their account
 
 
@@ -62,14 +66,26 @@ class Found:
 
 
 def reproduced(
-    session: Session, collection: str, wanted: Sequence[Wanted], shown: str
+    session: Session,
+    collection: str,
+    wanted: Sequence[Wanted],
+    shown: str,
+    *,
+    most: int | None = None,
 ) -> tuple[Found, ...]:
     """Each of them, in their order. One statement an edition and settings looked at; an account
-    for the first PARTED that need one."""
+    for the first PARTED that need one.
+
+    Raises: TooLarge where it takes more than `most` looks (None: as many as it takes).
+    """
     sides = _Sides(session, collection, shown)
+    _require_few(2 * len(wanted), most, len(wanted))
     stated = sides.values(wanted)
     now = sides.values([replace(one, edition=sides.standing or one.edition) for one in wanted])
     judged = [_judged(*three) for three in zip(wanted, stated, now, strict=True)]
+    lost = sum(one.kind in LOST for one in judged)
+    looks = 2 * len(wanted) + lost * len(sides.numbers) * len(SETTINGS)
+    _require_few(looks, most, len(wanted), lost)
     elsewhere = _elsewhere(sides, judged)
     found: list[Found] = []
     for at, one in enumerate(judged):
@@ -79,6 +95,32 @@ def reproduced(
         needs = one.kind in ("revised", "astray") and len(found) < PARTED
         found.append(replace(one, account=sides.account(one)) if needs else one)
     return tuple(found)
+
+
+def _require_few(looks: int, most: int | None, figures: int, lost: int = 0) -> None:
+    if most is None or looks <= most:
+        return
+    raise TooLarge(
+        _(
+            "This table has {figures} figures, of which {lost} are not as the stated edition and "
+            "settings give them: to look for all of them takes up to {looks} looks, and one answer "
+            "makes at most {most}. Hand in a part of the table, or have all of it looked up from a "
+            "terminal, where that may take as long as it does: ebbline reproduce FILE",
+            figures=whole(figures),
+            lost=whole(lost),
+            looks=whole(looks),
+            most=whole(most),
+        )
+        if lost
+        else _(
+            "This table has {figures} figures, which takes {looks} looks, and one answer makes at "
+            "most {most}. Hand in a part of the table, or have all of it looked up from a "
+            "terminal, where that may take as long as it does: ebbline reproduce FILE",
+            figures=whole(figures),
+            looks=whole(looks),
+            most=whole(most),
+        )
+    )
 
 
 def _judged(one: Wanted, value: float, later: float) -> Found:
@@ -96,7 +138,7 @@ def _elsewhere(sides: "_Sides", judged: Sequence[Found]) -> dict[int, tuple[int,
     """Which edition and settings give those that the stated ones do not, by their place: other
     editions before other settings."""
     found: dict[int, tuple[int, str]] = {}
-    places = [at for at, one in enumerate(judged) if one.kind in ("astray", "cut")]
+    places = [at for at, one in enumerate(judged) if one.kind in LOST]
     for turn in range(len(SETTINGS)):
         for edition in sides.numbers:
             left = [at for at in places if at not in found]

@@ -5,6 +5,7 @@ from fastapi import APIRouter, Request, Response
 from server.accounts.viewer import Right
 from server.pages import reproduce
 from server.pages.reproduce import Asked
+from server.results.reproducing import MOST
 from server.routes import plain
 from server.routes.asking import TWINS, SessionDep, needs
 from server.routes.forms import FormDep, file, text
@@ -34,7 +35,7 @@ def look_up(request: Request, session: SessionDep, form: FormDep) -> Response:
             for name in ("collection", "edition", "settings", "of", "address")
         }
     )
-    page = reproduce.build(session, *found, asked)
+    page = reproduce.build(session, *found, asked, most=MOST)
     twin = text(form, "as")
     if twin not in TWINS:
         return web.render(request, page)

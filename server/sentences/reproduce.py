@@ -123,7 +123,3 @@ def unreadable(what: str, text: str) -> str:
         "settings": _("settings"),
     }[what]
     return _("its {part} “{text}” is not known", part=named, text=text)
-
-
-def too_many(most: int) -> Sentence:
-    return phrase(_("Only the first {most} rows were looked at."), most=whole(most))

@@ -7,6 +7,7 @@ from sqlalchemy.orm import Session
 
 from engine import indicators
 from engine import settings as named
+from engine.settings import SETTINGS
 from server.exports import csv, json, xlsx
 from server.pages import population_year, trend
 from server.pages.page import Page
@@ -15,6 +16,7 @@ from server.pages.twins import twin
 from server.results.keys import BadValue, PopulationYear
 from server.results.loading import load
 from server.results.questions import PopulationYearQuestion, TrendQuestion
+from server.results.series import TooLarge
 from server.sentences.pieces import plain
 from server.store import editions
 from server.store.heading import heading
@@ -161,3 +163,26 @@ def test_what_is_not_said_is_asked(isle: Session) -> None:
     with pytest.raises(BadValue, match="has no edition 9"):
         looked_up(isle, "north,f,2014,e0,75.0", collection="isle", edition="9")
     assert [code for code, _name in form(isle).collections] == ["", "isle", "other"]
+
+
+def plain_table(rows: int, value: str) -> str:
+    return "".join(f"north,f,{2012 + at % 3},e0,{value}\n" for at in range(rows))
+
+
+def test_a_table_that_takes_too_long_is_refused_and_a_terminal_is_offered(
+    isle: Session, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Two looks for each figure; and for one that is not found, one at each edition and setting."""
+    beside = {"collection": "isle", "edition": "1"}
+    content = (HEAD + plain_table(10, "1.25")).encode()
+    looks = 2 * 10 + 10 * 2 * len(SETTINGS)
+    page = build(isle, "t.csv", content, Asked(**beside), most=looks)
+    assert verdicts(page) == ["not found"] * 10
+    with pytest.raises(TooLarge, match=f"of which 10 are not .* takes up to {looks} looks"):
+        build(isle, "t.csv", content, Asked(**beside), most=looks - 1)
+    with pytest.raises(TooLarge, match=r"which takes 20 looks.* ebbline reproduce FILE"):
+        build(isle, "t.csv", content, Asked(**beside), most=19)
+    assert verdicts(build(isle, "t.csv", content, Asked(**beside), most=None)) == ["not found"] * 10
+    monkeypatch.setattr("server.results.printed_tables.MOST_ROWS", 9)
+    with pytest.raises(TooLarge, match="has 10 rows; a table of at most 9"):
+        build(isle, "t.csv", content, Asked(**beside))

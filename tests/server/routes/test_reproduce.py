@@ -1,6 +1,9 @@
 """The form that looks a printed table up, and its answer as a page and as JSON."""
 
+import pytest
 from starlette.testclient import TestClient
+
+from server.routes import reproduce
 
 TREND = (
     "/c/isle/1/trend{twin}?of=e0&area=north&sex=f&from=2012&to=2014&figures=released"
@@ -26,3 +29,15 @@ def test_what_cannot_be_looked_up_is_refused(reader: TestClient) -> None:
     assert reader.post("/reproduce", files=empty).status_code == 400
     table = {"file": ("t.csv", b"area,sex,year,value\nnorth,f,2014,8\n", "text/csv")}
     assert reader.post("/reproduce", files=table, data={"edition": "7"}).status_code == 400
+
+
+def test_above_the_cap_it_is_a_question_too_large(
+    reader: TestClient, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    content = reader.get(TREND.format(twin=".xlsx")).content
+    sent = {"file": ("trend.xlsx", content, "application/octet-stream")}
+    monkeypatch.setattr(reproduce, "MOST", 5)
+    answer = reader.post("/reproduce", files=sent)
+    assert answer.status_code == 422
+    assert "Too large a question" in answer.text
+    assert "ebbline reproduce FILE" in answer.text
