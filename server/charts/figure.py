@@ -47,7 +47,8 @@ def figure(chart: Chart, say: Callable[[str], str], *, separators: str = ".,") -
 def _x_axis(chart: Chart, *, narrow: bool) -> dict[str, Any]:
     low, high = chart.x_range
     if chart.x_kind == "amount":
-        ticks = {"tickvals": [*chart.x_ticks], "tickformat": f"+,.{decimals(chart.x_ticks)}f"}
+        sign = "+" if low < 0 else ""  # of changes
+        ticks = {"tickvals": [*chart.x_ticks], "tickformat": f"{sign},.{decimals(chart.x_ticks)}f"}
         return {**LAYOUT["xaxis"], "range": [low, high], **ticks}
     step = STEP[chart.x_kind][narrow]
     at = [step * index for index in range(ceil(low / step), floor(high / step) + 1)]

@@ -1,5 +1,6 @@
 """One cause of death through the years: its standardised rate, cut where its coding changed."""
 
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -46,46 +47,48 @@ class Course:
 
 
 def course(
-    held: Holdings, of: PopulationYear, cause: Cause, found: Found, settings: Settings
+    held: Holdings, of: PopulationYear, cause: Cause, leaves: Found, settings: Settings
 ) -> Course | None:
-    """None where fewer than two years hold the cause."""
-    known = [
-        (one.period, loaded, loaded.causes)
-        for one, loaded in found.items()
-        if isinstance(one, PopulationYear)
-        and loaded.causes is not None
-        and any(listed.code == cause.code for listed in loaded.causes.list)
-    ]
-    known.sort(key=lambda item: item[0])
+    """None where fewer than two years hold the cause. `leaves` are the years by the causes that
+    have no parts; one that has some is their sum."""
+    top = top_of(held.causes)
+    known = sorted(
+        (
+            (one.period, loaded, loaded.causes, places)
+            for one, loaded in leaves.items()
+            if isinstance(one, PopulationYear) and loaded.causes is not None
+            for places in [_places(loaded.causes, cause, top)]
+            if places
+        ),
+        key=lambda item: item[0],
+    )
     if len(known) < 2:
         return None
-    own = [_alone(loaded, causes, cause) for _period, loaded, causes in known]
-    estimate = _rates(own, settings)
+    own = [_alone(loaded, causes, places) for _period, loaded, causes, places in known]
     breaks = _breaks(held, of, cause)
-    applied = {one for _p, _l, causes in known for one in causes.ratios}
+    applied = {one for _p, _l, causes, _places in known for one in causes.ratios}
     return Course(
         cause,
-        tuple(period for period, _loaded, _causes in known),
-        estimate,
+        tuple(item[0] for item in known),
+        _rates(own, settings),
         tuple(float(panel.deaths.sum()) for panel in own),
-        tuple(loaded.status for _period, loaded, _causes in known),
+        tuple(loaded.status for _period, loaded, _causes, _places in known),
         tuple(one for one in breaks if one.kind != "shock" and one not in applied),
         tuple(one for one in breaks if one in applied),
         tuple(one for one in breaks if one.kind == "shock"),
     )
 
 
-def _alone(loaded: Loaded, causes: Causes, cause: Cause) -> Panel:
+def _places(causes: Causes, cause: Cause, top: Mapping[str, str]) -> list[int]:
+    return [
+        at for at, one in enumerate(causes.list) if cause.code in (one.code, top.get(one.code, ""))
+    ]
+
+
+def _alone(loaded: Loaded, causes: Causes, places: list[int]) -> Panel:
     """The people, and the deaths of this cause."""
-    at = [one.code for one in causes.list].index(cause.code)
-    counted = causes.counts.counted
-    return replace(
-        loaded.panel,
-        deaths=causes.counts.deaths[at],
-        counted=None if counted is None else counted[at],
-        whole=None,
-        standard=None,
-    )
+    own = causes.counts.over(lambda array: array[places].sum(axis=0))
+    return replace(loaded.panel, deaths=own.deaths, counted=own.counted, whole=None, standard=None)
 
 
 def _rates(own: list[Panel], settings: Settings) -> Estimate:

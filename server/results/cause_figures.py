@@ -18,7 +18,7 @@ from engine.indicator import Indicator
 from engine.panel import Panel
 from engine.settings import Settings, span
 from server.results.cause_course import Course, course
-from server.results.causes import APPLIED, CAUSES, CauseChoice, Causes, Listed
+from server.results.causes import APPLIED, CAUSES, NOT_STATED, CauseChoice, Causes, Listed
 from server.results.holdings import Holdings, NotInEdition, holdings
 from server.results.loading import Beside, Found, Loaded, assembled, needed
 from server.results.questions import CausesQuestion, PopulationYear
@@ -27,6 +27,7 @@ from server.results.revision import Moved, moved
 from server.results.targets import Reached, reached
 from server.sentences import names
 from server.sentences.text import _
+from server.store.causes import top_of
 from server.store.connect import Session
 from server.store.heading import Heading
 from server.store.records import Cause
@@ -37,6 +38,16 @@ RATES: tuple[Indicator, ...] = tuple(
 )
 OF_ALL = tuple(indicators.find(key) for key in ("e0", "edagger", "H", "75q0")) + RATES
 PREMATURE = 75  # deaths before this age
+AVOIDABLE = tuple(indicators.find(key) for key in ("asr75_esp2013", "yll75"))
+
+
+@dataclass(frozen=True, slots=True)
+class Avoidable:
+    """Of the causes that a reader counts as avoidable, together, before 75."""
+
+    causes: tuple[Cause, ...]  # without parts
+    deaths: float
+    estimates: Mapping[str, Estimate]  # no batch axes
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,6 +66,7 @@ class CauseFigures:
     all: Mapping[str, Estimate]  # the same of all causes, no batch axes
     lost: Array  # [cause, age] years lost per death by cause and age; they add up to e-dagger
     targets: tuple[Reached, ...]
+    avoidable: Avoidable | None  # of the causes that the reader counts as such
     course: Course | None  # one cause through the years
     moved: Moved | None
 
@@ -86,6 +98,11 @@ class CauseFigures:
         return bool(np.isfinite(self.all["edagger"].value))
 
     @property
+    def each(self) -> bool:
+        """Whether causes are shown each by itself: then they are many, and each is small."""
+        return self.question.causes is not None and self.question.causes.level == CAUSES
+
+    @property
     def order(self) -> tuple[int, ...]:
         """Places of the causes that somebody died of: by years lost where these are known, else by
         deaths; the most first."""
@@ -93,6 +110,14 @@ class CauseFigures:
         by = self.estimates["edagger"].value if self.readable else deaths
         some = [at for at in range(len(self.causes)) if deaths[at] > 0]
         return tuple(sorted(some, key=lambda at: (-float(by[at]), at)))
+
+    @property
+    def named(self) -> tuple[Cause, ...]:
+        """Every cause that the page names deaths of."""
+        targets = [cause for one in self.targets for cause in one.causes]
+        followed = [self.course.cause] if self.course else []
+        avoidable = self.avoidable.causes if self.avoidable else ()
+        return (*(self.causes[at] for at in self.order), *targets, *followed, *avoidable)
 
     @property
     def leading(self) -> tuple[int, ...]:
@@ -109,24 +134,23 @@ def cause_figures(session: Session, heading: Heading, question: CausesQuestion) 
     held.require(question.of)
     if not held.causes:
         raise NotInEdition(no_causes())
-    course_of = _years(held, question.of, settings)
+    _require_listed(held, question)
+    wanted = _years(held, question.of, settings)
     beside = replace(Beside.of(settings, held.areas), causes=choice)
-    cells = released(session, collection, number, needed(course_of, beside), question.figures)
+    cells = released(session, collection, number, needed(wanted, beside), question.figures)
     listed = Listed(
         held.causes,
         tuple(one for one in held.breaks if one.cause and one.ratio is not None)
         if choice.ratios == APPLIED
         else (),
     )
-    found = assembled(cells, course_of, beside, listed)
-    fine = (
-        beside if choice.level == CAUSES else replace(beside, causes=replace(choice, level=CAUSES))
-    )
-    leaves = found if fine is beside else assembled(cells, [question.of], fine, listed)
-    if question.of not in found:
+    fine = replace(beside, causes=replace(choice, level=CAUSES))
+    leaves = assembled(cells, wanted, fine, listed)
+    shown = leaves if choice == fine.causes else assembled(cells, [question.of], beside, listed)
+    if question.of not in shown:
         raise held.lacks(question.of, settings.years)
-    loaded, own = found[question.of], found[question.of].causes
-    if own is None or (finest := leaves[question.of].causes) is None:
+    loaded, own, finest = shown[question.of], shown[question.of].causes, leaves[question.of].causes
+    if own is None or finest is None:
         raise NotInEdition(_not_by_cause(heading, question))
     panel = loaded.panel
     made = CauseFigures(
@@ -142,10 +166,26 @@ def cause_figures(session: Session, heading: Heading, question: CausesQuestion) 
         all=indicators.estimates(OF_ALL, panel, settings),
         lost=losses.years_lost(panel, own.counts, settings),
         targets=reached(panel, finest.counts, finest.list, settings),
+        avoidable=_avoidable(panel, finest, held, question, settings),
         course=None,
         moved=_moved(session, heading, question, beside, settings),
     )
-    return replace(made, course=_course(made, found))
+    return replace(made, course=_course(made, leaves))
+
+
+def _require_listed(held: Holdings, question: CausesQuestion) -> None:
+    """NotInEdition where a cause is named that is not in the list."""
+    codes = [one.code for one in (*held.causes, NOT_STATED)]
+    unknown = [one for one in (question.cause, *question.avoidable) if one and one not in codes]
+    if unknown:
+        raise NotInEdition(
+            _(
+                "The cause list of this edition has no {unknown}. Its causes are {causes}. Choose"
+                " among these.",
+                unknown=names.listed(unknown),
+                causes=names.listed(codes, most=60),
+            )
+        )
 
 
 def _years(held: Holdings, of: PopulationYear, settings: Settings) -> list[PopulationYear]:
@@ -183,16 +223,35 @@ def _wider(one: Estimate, error: Array, level: float) -> Estimate:
     )
 
 
-def _course(made: CauseFigures, found: Found) -> Course | None:
-    """Of the cause asked for, or that which costs most."""
-    codes = [cause.code for cause in made.causes]
-    if made.question.cause in codes:
-        at = codes.index(made.question.cause)
-    elif made.leading:
-        at = made.leading[0]
-    else:
+def _avoidable(
+    panel: Panel, finest: Causes, held: Holdings, question: CausesQuestion, settings: Settings
+) -> Avoidable | None:
+    """Deaths before 75 of the causes named, and of those under them, together."""
+    top = top_of(held.causes)
+    places = [
+        at
+        for at, one in enumerate(finest.list)
+        if {one.code, top.get(one.code, "")} & set(question.avoidable)
+    ]
+    if not places:
         return None
-    return course(made.holdings, made.of, made.causes[at], found, made.settings)
+    own = finest.counts.over(lambda array: array[..., places, :].sum(axis=-2, keepdims=True))
+    young = np.array(panel.grid.starts) < PREMATURE
+    found = rates.rates_by_cause(AVOIDABLE, panel, own, settings)
+    return Avoidable(
+        tuple(finest.list[at] for at in places),
+        float((own.deaths * young).sum()),
+        {key: one[0] for key, one in found.items()},
+    )
+
+
+def _course(made: CauseFigures, leaves: Found) -> Course | None:
+    """Of the cause asked for, or that which costs most."""
+    listed = {one.code: one for one in (*made.holdings.causes, *made.causes)}
+    chosen = made.question.cause or (made.causes[made.leading[0]].code if made.leading else "")
+    if chosen not in listed:
+        return None
+    return course(made.holdings, made.of, listed[chosen], leaves, made.settings)
 
 
 def _moved(

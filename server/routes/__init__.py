@@ -2,6 +2,7 @@
 
 from server.routes import (
     account,
+    causes,
     changes,
     comparison,
     contents,
@@ -16,6 +17,7 @@ from server.routes import (
     trend,
     upload_reading,
     uploads,
+    what_would_change,
 )
 
 ROUTERS = (
@@ -23,6 +25,7 @@ ROUTERS = (
     contents.router,
     population_year.router,
     curves.router,
+    causes.router,
     comparison.router,
     quality.router,
     changes.router,
@@ -34,4 +37,5 @@ ROUTERS = (
     upload_reading.router,
     methods.router,
     policy.router,
+    *what_would_change.ROUTERS,
 )
