@@ -1,6 +1,8 @@
 """The application on an edition of its own, and a reader of it."""
 
+import shutil
 from collections.abc import Iterator
+from pathlib import Path
 
 import pytest
 from fastapi import FastAPI
@@ -10,8 +12,10 @@ from engine.ages import AgeGrid
 from engine.panel import Panel
 from server.app import create_app
 from server.config import Config
-from server.store.connect import Session, make_engine, sessions
+from server.store.connect import Session
+from tests.conftest import DATABASE, opened
 from tests.factories import GRIDS, edition, gompertz_panel
+from tests.once import once
 from tests.server.web.site import browser
 
 FIVE = GRIDS["abridged"]
@@ -22,20 +26,31 @@ def counted(sex: str, seed: int, level: float = 2.6e-5, people: float = 2e6) -> 
     return gompertz_panel(sex=sex, seed=seed, level=level, people=people)
 
 
+@pytest.fixture(scope="session")
+def stood(shared: Path, sqlite_template: Path) -> Path:
+    """A data folder in which edition 1 of the isle stands; to be copied, not changed."""
+
+    def fill(folder: Path) -> None:
+        shutil.copy(sqlite_template, folder / DATABASE)
+        with opened(folder) as session:
+            panels = {}
+            for seed, year in enumerate(("2012", "2013", "2014")):
+                for sex in "fm":
+                    panels[f"north.{sex}.{year}"] = counted(sex, seed, 2.8e-5 - 1e-6 * seed)
+                    panels[f"cape.{sex}.{year}"] = counted(sex, seed, people=3e4).regroup(SHORT)
+                    panels[f"rock.{sex}.{year}"] = counted(sex, seed, people=3e3)
+            edition(session, panels, provisional=("2014",))
+
+    return once(shared, "routes", fill)
+
+
 @pytest.fixture
-def writer(sqlite_url: str) -> Iterator[Session]:
+def writer(stood: Path, sqlite_url: str) -> Iterator[Session]:
     """A session on the application's database, on which edition 1 of the isle stands."""
-    engine = make_engine(sqlite_url)
-    with sessions(engine)() as session:
-        panels = {}
-        for seed, year in enumerate(("2012", "2013", "2014")):
-            for sex in "fm":
-                panels[f"north.{sex}.{year}"] = counted(sex, seed, 2.8e-5 - 1e-6 * seed)
-                panels[f"cape.{sex}.{year}"] = counted(sex, seed, people=3e4).regroup(SHORT)
-                panels[f"rock.{sex}.{year}"] = counted(sex, seed, people=3e3)
-        edition(session, panels, provisional=("2014",))
+    place = Path(sqlite_url.removeprefix("sqlite:///"))
+    shutil.copy(stood / DATABASE, place)
+    with opened(place.parent) as session:
         yield session
-    engine.dispose()
 
 
 @pytest.fixture
