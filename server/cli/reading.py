@@ -9,6 +9,7 @@ from dataclasses import replace
 from pathlib import Path
 
 from server.cli.refusals import Declined
+from server.intake.causes.lists import CAUSE_LISTS
 from server.intake.forms.delimiters import NAMES
 from server.intake.mapping import COLUMNS, EVERY_ROLE, JANUARY, LISTS, SIGNS, Mapping
 from server.intake.parsing import Handed
@@ -29,6 +30,7 @@ OPTIONS = {  # that answer a question, by its key
     "rate_is": "--rate-is",
     "sexes": "--sex-code",
     "signs": "--sign",
+    "cause_list": "--cause-list",
 }
 MEANINGS = {sign.replace("_", "-"): sign for sign in SIGNS}
 
@@ -188,9 +190,18 @@ def _said(looked: Looked, asked: argparse.Namespace, *, told: bool) -> Said:
         across_number=_of(asked.cells, role) or said.across_number,
         units=tuple(units.items()),
         rate_is=_of(asked.rate_is, role) or said.rate_is,
+        cause_list=_cause_list(asked, role) or said.cause_list,
         sex_codes=tuple((dict(mapping.sex_codes) | dict(asked.sex_code)).items()),
         signs=tuple((text, meaning) for text, meaning in signs.items() if text in looked.signs),
     )
+
+
+def _cause_list(asked: argparse.Namespace, role: str) -> str:
+    name = _of(asked.cause_list, role)
+    if name and name not in CAUSE_LISTS:
+        known = ", ".join(CAUSE_LISTS)
+        raise Declined(_("--cause-list {name}: expected one of {known}.", name=name, known=known))
+    return name
 
 
 def _signs(asked: argparse.Namespace) -> dict[str, str]:

@@ -19,6 +19,7 @@ def add_files(command: argparse.ArgumentParser) -> None:
         ("rates", _("death rates or probabilities, to be multiplied by the population")),
         ("areas", _("what becomes of area codes: old code, new code, share")),
         ("breaks", _("years in which the series of an area breaks, and why")),
+        ("causes", _("a list of causes of death of your own: code, name, codes")),
     ):
         files.add_argument(f"--{role}", metavar=_("FILE"), help=text)
     files.add_argument(
@@ -94,6 +95,7 @@ def add_form(command: argparse.ArgumentParser) -> None:
         ("--shape", _("FIELDS"), _("long, or what the headings hold, as in sex-age")),
         ("--cells", _("NUMBER"), _("what the cells of a wide table count")),
         ("--rate-is", _("KIND"), _("rate or probability")),
+        ("--cause-list", _("LIST"), _("what causes of death fall into: chapters, short or own")),
     ):
         group.add_argument(option, action="append", default=[], metavar=metavar, help=text)
     group.add_argument(

@@ -20,7 +20,15 @@ from server.intake.cells import (
     parts_of,
     whole_code,
 )
-from server.intake.checks import OF_LEDGER, cause_profiles, columns, files, totals, unstated
+from server.intake.checks import (
+    OF_LEDGER,
+    cause_columns,
+    cause_profiles,
+    columns,
+    files,
+    totals,
+    unstated,
+)
 from server.intake.checks import areas as area_checks
 from server.intake.checks import causes as cause_sums
 from server.intake.checks import worked_out as derived
@@ -151,7 +159,7 @@ def _counts(
         found = files.problems_of(laid)
         if not errors_of(found):
             mapped = columns.Mapped(laid, file.role, file.mapping, own.handed_in)
-            found += columns.problems_of(mapped)
+            found += [*columns.problems_of(mapped), *cause_columns.problems_of(mapped)]
         problems += found
         unlisted = by_cause(file.role, file.mapping) and not _list_of(file, own)
         if errors_of(found) or unlisted:

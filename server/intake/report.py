@@ -4,6 +4,7 @@ import json
 from dataclasses import asdict, dataclass
 
 from server.intake.break_rows import NONE
+from server.intake.causes.counted import Counted, counted
 from server.intake.parsing import Parsed
 from server.intake.problems import Problem
 from server.intake.sharing import Unstated
@@ -29,6 +30,7 @@ class Report:
     becoming: tuple[tuple[str, ...], ...] = ()  # old code, first and last year, new codes, how
     breaks: tuple[tuple[str, ...], ...] = ()  # year, kind (empty: it ends), area
     rebased: tuple[str, ...] = ()  # years held that get a new population
+    by_cause: tuple[Counted, ...] = ()  # deaths under each cause, and those without
 
     @classmethod
     def of(cls, parsed: Parsed) -> "Report":
@@ -63,6 +65,7 @@ class Report:
                 for one in parsed.breaks
             ),
             rebased=parsed.rebased,
+            by_cause=counted(parsed.cells, parsed.causes, _sum_of_others(parsed)),
         )
 
     @property
@@ -77,6 +80,7 @@ class Report:
         stored = {name: getattr(self, name) for name in self.__slots__}
         stored["problems"] = [problem.to_json() for problem in self.problems]
         stored["unstated"] = [asdict(year) for year in self.unstated]
+        stored["by_cause"] = [asdict(cause) for cause in self.by_cause]
         return json.dumps(stored, sort_keys=True, ensure_ascii=False)
 
     @classmethod
@@ -88,4 +92,10 @@ class Report:
             lists[name] = tuple(tuple(row) for row in stored.get(name, ()))
         lists["grids"] = tuple(tuple(labels) for labels in stored["grids"])
         lists["unstated"] = tuple(Unstated(**year) for year in stored.get("unstated", ()))
+        lists["by_cause"] = tuple(Counted(**cause) for cause in stored.get("by_cause", ()))
         return cls(**(stored | lists))
+
+
+def _sum_of_others(parsed: Parsed) -> str:
+    """The whole, where its parts are handed in too."""
+    return parsed.whole if any(key.area != parsed.whole for key in parsed.cells) else ""

@@ -78,6 +78,20 @@ _BREAKS = _csv(
 )
 
 
+_CAUSES = _csv(
+    "code,name,part of,codes,kind,care,sex",
+    [
+        ("heart", "Heart and circulation", "", "", "", "", ""),
+        ("coronary", "Coronary heart disease", "heart", "I20-I25", "", "", ""),
+        ("heart-other", "Other heart and circulation", "heart", "I00-I15 I26-I99", "", "", ""),
+        ("prostate", "Prostate cancer", "", "C61", "", "", "m"),
+        ("suicide", "Suicide", "", "X60-X84 Y87.0", "external", "suicide", ""),
+        ("vague", "Ill-defined", "", "R00-R94 R96-R98", "ill-defined", "", ""),
+        ("waiting", "Not yet known", "", "R99", "pending", "", ""),
+    ],
+)
+
+
 # role of the file and its text; the name is the role with .csv
 TEMPLATES: dict[str, str] = {
     "deaths": _deaths(),
@@ -85,4 +99,5 @@ TEMPLATES: dict[str, str] = {
     "births": _births(),
     "areas": _AREAS,
     "breaks": _BREAKS,
+    "causes": _CAUSES,
 }

@@ -8,6 +8,7 @@ from server.intake.forms.encodings import ENCODINGS
 from server.intake.mapping import EVERY_ROLE, LISTS, NUMBERS, ROLES, Mapping, numbers_of
 from server.intake.recognising.columns import fields_of
 from server.intake.recognising.look import Looked
+from server.pages.file_causes import cause_lists, fallen, lost
 from server.pages.form_fields import Field, select, text
 from server.sentences import reading as say
 from server.sentences import reading_form as ask
@@ -31,6 +32,9 @@ class FileReading:
     form_open: bool  # some of that is a guess
     sent: tuple[tuple[str, str], ...]  # goes along unseen: the form it is shown in, texts of sexes
     asked: tuple[Field, ...]  # what the file does not say by itself
+    causes: str  # key of the table of how its causes fall into their list; empty: there is none
+    fallen: str  # the same in a sentence
+    lost: str  # causes that are not in the list
     columns: tuple[Field, ...]
     others: tuple[Field, ...]  # fields that no column was found for and none is needed
     found: str  # sums among the rows
@@ -63,6 +67,9 @@ def file_reading(file: UploadFile, looked: Looked, errors: dict[str, str]) -> Fi
         ),
         sent=_sent(looked),
         asked=tuple(field.wrong(errors) for field in asked),
+        causes=f"{role}_causes" if looked.fallen else "",
+        fallen=fallen(looked),
+        lost=lost(looked),
         columns=tuple(main),
         others=tuple(others),
         found=ask.totals(looked.noticed.totals),
@@ -205,7 +212,7 @@ def _asked(looked: Looked) -> list[Field]:
         kinds = ask.rate_kinds()
         label = _("These are")
         fields.append(select(name, label, kinds, mapping.rate_is, width="wide", required=True))
-    return fields + _signs(looked) + _sexes(looked)
+    return fields + _signs(looked) + _sexes(looked) + cause_lists(looked)
 
 
 def _units(looked: Looked) -> list[Field]:

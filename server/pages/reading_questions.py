@@ -7,6 +7,7 @@ from server.intake.mapping import LISTS, Mapping
 from server.intake.recognising.look import Looked
 from server.pages.form_fields import Field, radios, select, text
 from server.sentences import reading as say
+from server.sentences import reading_causes
 from server.sentences import reading_form as ask
 from server.sentences.text import _
 from server.store.records import Basis
@@ -81,6 +82,8 @@ def open_errors(looked: tuple[Looked, ...], texts: Mapped[str, str]) -> dict[str
             found[f"{role}.across_number"] = ask.number_missing()
         if "rate_is" in one.open:
             found[f"{role}.rate_is"] = ask.rate_missing()
+        if "cause_list" in one.open:
+            found[f"{role}.cause_list"] = reading_causes.cause_list_missing()
         units = dict(one.mapping.units)
         for number, _proposal in one.units:
             if number not in units:
@@ -196,7 +199,7 @@ def _last_age(form: _Form, looked: tuple[Looked, ...]) -> Field:
         _("Ages"),
         form.value("last_age_open"),
         (("yes", label),),
-        hint=ask.last_age(last),
+        hint=say.last_age(last),
         width="whole",
     )
 

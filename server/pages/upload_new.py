@@ -37,6 +37,7 @@ class UploadNewPage(Page):
     accepts: str  # names and kinds of files that the choosers offer
     templates: Sentence
     rebase: Sentence  # a population alone
+    causes: Sentence  # deaths by cause
     lists: tuple[TypedTable, ...]  # small tables that can be typed
 
 
@@ -73,6 +74,7 @@ def build(session: Session, chosen: str, *, limit: int) -> UploadNewPage:
         accepts=ACCEPTS,
         templates=templates(),
         rebase=say.about_rebase(),
+        causes=say.about_causes(),
         lists=(
             TypedTable(_("Codes of areas that changed"), say.about_areas(), lines("areas")),
             TypedTable(_("Breaks and years of shock"), say.about_breaks(), lines("breaks")),

@@ -6,7 +6,7 @@ from typing import ClassVar
 from server.exports.table import Column, Row, Table
 from server.intake.problems import Problem
 from server.intake.report import Report
-from server.pages import upload_unstated
+from server.pages import upload_causes, upload_unstated
 from server.pages.contents_tables import Listing
 from server.pages.page import Frame, Notice, Page
 from server.pages.upload import locator
@@ -46,6 +46,8 @@ class UploadProblemsPage(Page):
     counted: str  # how rows are counted
     unstated: Listing  # counts that did not state their sex, age or area: before and after
     shared_out: str
+    by_cause: Listing  # deaths under each cause
+    placed: str
     holds: tuple[tuple[str, str], ...]  # empty where nothing could be made out
     making: Making | None  # None: it is an edition already
 
@@ -72,7 +74,11 @@ def build(
         ),
         answer=_answer(upload, report),
         lead=() if upload.edition else (say.read_rows(report.rows, report.sound, number),),
-        tables=(_table(report.problems), *upload_unstated.listing(report).tables),
+        tables=(
+            _table(report.problems),
+            *upload_unstated.listing(report).tables,
+            *upload_causes.listing(report).tables,
+        ),
         twins={twin: f"{place}/problems.{twin}" for twin in ("csv", "xlsx", "json")},
         place=place,
         errors=_listing("errors", _("Must be put right"), report.errors),
@@ -80,6 +86,8 @@ def build(
         counted=_("Rows are counted as in the file, the heading being row 1."),
         unstated=upload_unstated.listing(report),
         shared_out=upload_unstated.said(report),
+        by_cause=upload_causes.listing(report),
+        placed=upload_causes.said(report),
         holds=_holds(report),
         making=None if upload.edition else _making(session, upload, report, taking, shown),
     )

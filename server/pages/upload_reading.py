@@ -7,7 +7,13 @@ from typing import Any, ClassVar
 
 from server.intake.mapping import JANUARY, LISTS, Mapping
 from server.intake.recognising.look import Before, Looked, Said, look, said_in
-from server.pages.file_reading import FileReading, file_reading, open_questions, sample
+from server.pages.file_causes import causes
+from server.pages.file_reading import (
+    FileReading,
+    file_reading,
+    open_questions,
+    sample,
+)
 from server.pages.page import Frame, Page
 from server.pages.reading_questions import Asked, asked, open_errors
 from server.pages.upload import locator
@@ -111,7 +117,7 @@ def build(
         ),
         answer=_answer(looked, unreadable, errors),
         lead=_lead(looked),
-        tables=tuple(sample(one) for one in looked),
+        tables=tuple(table for one in looked for table in (sample(one), *causes(one))),
         place=f"/uploads/{upload.id}",
         collection=collection.code,
         readable=len(unreadable) < len(looked),

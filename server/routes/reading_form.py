@@ -67,6 +67,7 @@ def _said(form: Form, role: str, errors: dict[str, str]) -> Said:
         across_number=form.get(f"{role}.across_number", ""),
         units=tuple(units),
         rate_is=form.get(f"{role}.rate_is", ""),
+        cause_list=form.get(f"{role}.cause_list", ""),
         sex_codes=tuple((said, sex) for said, sex in codes if said and sex),
         signs=tuple((said, what) for said, what in signs if said and what in intake.SIGNS),
     )

@@ -18,6 +18,7 @@ def role(code: str) -> str:
         "rates": _("death rates or probabilities of dying"),
         "areas": _("what becomes of area codes"),
         "breaks": _("breaks of a series"),
+        "causes": _("a list of causes of death"),
     }[code]
 
 
@@ -36,6 +37,7 @@ def field(code: str) -> str:
         "neonatal_deaths": _("deaths before 28 days"),
         "rate": _("death rate or probability"),
         "status": _("provisional or final"),
+        "cause": _("cause of death"),
     }[code]
 
 
@@ -142,3 +144,8 @@ def sexes() -> Options:
         ("", _("a column says it")),
         *((code, names.sex(code)) for code in ("f", "m", "p")),
     )
+
+
+def last_age(text: str) -> str:
+    """Beside the box for an open last age; empty where one is marked as open."""
+    return _("nothing marks the last one, “{text}”, as open", text=text) if text else ""

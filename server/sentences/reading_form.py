@@ -102,6 +102,7 @@ def _across(code: str) -> str:
         "sex": _("sexes"),
         "age": _("ages"),
         "number": _("the kind of count"),
+        "cause": _("causes of death"),
     }[code]
 
 
@@ -196,7 +197,7 @@ def totals(found: tuple[tuple[str, tuple[str, ...]], ...]) -> str:
 
 
 def _matter(code: str) -> str:
-    return {"sex": _("sex"), "age": _("age"), "area": _("area")}[code]
+    return {"sex": _("sex"), "age": _("age"), "area": _("area"), "cause": _("cause")}[code]
 
 
 def quoted(texts: tuple[str, ...]) -> str:
@@ -247,11 +248,6 @@ def lost(edition: int, fields: tuple[tuple[str, str], ...]) -> str:
 
 def changed() -> str:
     return _("With this choice the table is another one: look at its columns, then check it.")
-
-
-def last_age(text: str) -> str:
-    """Beside the box for an open last age; empty where one is marked as open."""
-    return _("nothing marks the last one, “{text}”, as open", text=text) if text else ""
 
 
 # what is wrong with an answer
@@ -342,6 +338,7 @@ def question(key: str, sexes: tuple[str, ...], signs: tuple[str, ...]) -> str:
         "number": _("what the cells count"),
         "units": _("what figures are counted in"),
         "rate_is": _("whether these are rates or probabilities"),
+        "cause_list": _("which list its causes of death fall into"),
     }[key]
 
 

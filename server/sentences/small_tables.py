@@ -84,6 +84,18 @@ def about_rebase() -> Sentence:
     )
 
 
+def about_causes() -> Sentence:
+    return phrase(
+        _(
+            "{causes} A column of codes of ICD-10 is enough; rows of all causes are kept as a"
+            " cross-check. Causes of another classification, or a grouping of your own, need a list"
+            " of causes beside the deaths, each time: {template}."
+        ),
+        causes=Piece(_("Deaths by cause:"), emphasis="strong"),
+        template=Piece("causes.csv", "/templates/causes.csv"),
+    )
+
+
 def facts(
     becoming: Sequence[Sequence[str]], breaks: Sequence[Sequence[str]], rebased: Sequence[str]
 ) -> tuple[tuple[str, str], ...]:

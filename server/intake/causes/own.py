@@ -47,9 +47,8 @@ def _read(line: Line) -> Cause | None:
     sex = read_only_sex(line["sex"])
     if not is_code(line["code"]) or kind is None or care is None or sex is None:
         return None
-    ranges = tuple(
-        part for text in re.split("[,;+]", line["codes"]) if (part := "".join(text.split()))
-    )
+    joined = re.sub(r"\s*[-\u2010-\u2015\u2212]\s*", "-", line["codes"])
+    ranges = tuple(filter(None, re.split(r"[,;+\s]+", joined)))
     label = line["name"] or line["code"]
     return Cause(line["code"], label, line["parent"], ranges, kind, care, sex)
 

@@ -9,6 +9,7 @@ from server.intake.checks import (
     areas,
     basis,
     breaks,
+    cause_columns,
     cause_lists,
     cause_profiles,
     cause_rows,
@@ -57,7 +58,7 @@ CHAPTERS = (
         "form",
         "The form of the file",
         "Can the file be read, and does every row say what it counts?",
-        (forms, files, columns, areas, fields, ages),
+        (forms, files, columns, cause_columns, areas, fields, ages),
     ),
     Chapter(
         "sums",

@@ -213,7 +213,7 @@ def test_the_form_may_be_said_of_one_kind_of_file_alone(ebbline: Ebbline, counts
             ("--counts", "HERE", "--collection", "no code", *NEW),
             "expected 1 to 32 of the letters",
         ),
-        (("--counts", "HERE", "--column", "cause=x"), "there is no field cause"),
+        (("--counts", "HERE", "--column", "county=x"), "there is no field county"),
     ],
 )
 def test_what_cannot_be_done_is_said_in_a_sentence(

@@ -36,11 +36,11 @@ def test_templates_are_files_to_fill_in(blank: TestClient, name: str, heading: s
 
 
 def test_another_template_is_refused_with_those_there_are(blank: TestClient) -> None:
-    answer = blank.get("/templates/causes.csv")
+    answer = blank.get("/templates/rates.csv")
     assert answer.status_code == 404
     assert answer.json()["detail"] == (
-        "There is no template causes.csv; there are deaths.csv, population.csv, births.csv, "
-        "areas.csv, breaks.csv."
+        "There is no template rates.csv; there are deaths.csv, population.csv, births.csv, "
+        "areas.csv, breaks.csv, causes.csv."
     )
 
 

@@ -77,7 +77,7 @@ def test_addresses_sort_as_the_file_reads_and_are_no_rows() -> None:
 @pytest.mark.parametrize(
     ("change", "what"),
     [
-        ({"across": ("sex", "cause")}, "a matter that cannot stand in headings"),
+        ({"across": ("sex", "county")}, "a matter that cannot stand in headings"),
         ({"across": ("sex", "sex")}, "a matter that cannot stand in headings"),
         ({"across": ("sex",)}, "a heading without a value for each matter"),
         ({"across_columns": ()}, "no heading whose meaning is said"),
