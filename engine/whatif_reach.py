@@ -39,12 +39,15 @@ def uniform(
     cells: NDArray[np.bool_],
     target: Array,
     settings: Settings,
+    *,
+    from_now: bool = False,
 ) -> Reach:
-    """The factor nearest to 1 at which the number is the target, all chosen rates times it.
+    """The factor nearest to 1 at which the number is the target, all chosen rates times it;
+    `from_now`: at which it differs by so much from what it is at the rates there are.
 
     By running the whole chain anew, at factors from 0 to 2 and then between the two neighbours that
     hold the target between them. Its limits: one death more moves the number at that factor, which
-    must move to make up for it.
+    must move to make up for it; counted from now, less what it moves the number now.
 
     Shape:   panel [..., age], cells [..., part, age], target [...] -> [...]; batches broadcast.
     Missing: the factor is nan where no such factor reaches the target.
@@ -57,6 +60,8 @@ def uniform(
     aimed = _Aimed(indicator, panel, parts, cells, settings)
     batch = np.broadcast_shapes(panel.batch_shape, cells.shape[:-2], np.shape(target))
     seen = aimed.looked_at(batch)
+    one = int(np.flatnonzero(LOOKED_AT == 1.0)[0])
+    target = target + seen[one] if from_now else target
     left = seen - target
     low, high = _nearest(left)
     ends = [np.take_along_axis(left, at[None], axis=0)[0] for at in (low, high)]
@@ -68,8 +73,7 @@ def uniform(
         at_high=np.where(low == high, np.nan, ends[1]),
         close=np.maximum(np.abs(CLOSE * target), 1e-300),
     )
-    limit = aimed.limits(found)
-    one = int(np.flatnonzero(LOOKED_AT == 1.0)[0])
+    limit = aimed.limits(found, from_now=from_now)
     return Reach(found, *limit, seen[one], seen[0])
 
 
@@ -121,13 +125,19 @@ class _Aimed:
         seen[0] = np.where(np.isfinite(seen[0]), seen[0], next_to_none)
         return seen
 
-    def limits(self, factor: Array) -> tuple[Array, Array]:
+    def weights(self, factor: Array) -> Array:
+        """What one death more of each age moves the number by at a factor, [..., 1, age]."""
+        found = chances([self.indicator], self.chain(factor))[self.indicator.key].weights
+        return found[..., None, :]
+
+    def limits(self, factor: Array, *, from_now: bool) -> tuple[Array, Array]:
         """Where chance in the deaths leaves the factor."""
         with np.errstate(all="ignore"):
-            weights = chances([self.indicator], self.chain(factor))[self.indicator.key].weights
+            weights = self.weights(factor)
             times = 1 - (1 - factor[..., None, None]) * self.cells
-            by_death = weights[..., None, :] * times * self.parts.worth
-            slope = (weights[..., None, :] * self.cells * self.parts.deaths).sum(axis=(-2, -1))
+            own = self.weights(np.ones_like(factor)) if from_now else 0.0
+            by_death = (weights * times - own) * self.parts.worth
+            slope = (weights * self.cells * self.parts.deaths).sum(axis=(-2, -1))
             moved = -by_death / slope[..., None, None]
             wide = moved.shape[:-2]
             counts = np.broadcast_to(self.parts.counts, moved.shape).reshape(*wide, -1)

@@ -18,6 +18,7 @@ from server.pages import population_year_tables as tables
 from server.pages.choices import Choice, choice
 from server.pages.page import Caution, Frame, Page
 from server.pages.statuses import marked, marks
+from server.pages.what_would_change import ways
 from server.pages.withholding import caution, charts_given, tables_given
 from server.results.account import AccountQuestion
 from server.results.loading import Loaded
@@ -312,7 +313,9 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
     behind = Piece(
         curves_say.question(), address(heading.collection.code, heading.edition.number, curves)
     )
-    return (*basis.further(tuple(links), course), (behind,), *_why(found), *_in_full(found))
+    change = ways(heading, of, asked.figures, asked.settings)
+    also = (*_why(found), *_in_full(found))
+    return (*basis.further(tuple(links), course), change, (behind,), *also)
 
 
 def _in_full(found: Findings) -> tuple[Sentence, ...]:

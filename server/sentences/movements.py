@@ -6,7 +6,7 @@ import numpy as np
 
 from engine.estimates import Estimate
 from engine.indicators import Unit
-from server.sentences.numbers import interval, number
+from server.sentences.numbers import NO_BREAK, interval, number
 from server.sentences.pieces import Piece
 from server.sentences.text import _
 
@@ -93,3 +93,9 @@ def years(value: float, decimals: int = 1) -> str:
     if float(text.replace(",", "")) < 1:
         return _("{amount}\N{NO-BREAK SPACE}of a year", amount=text)
     return _("{amount}\N{NO-BREAK SPACE}years", amount=text)
+
+
+def value(of: float, unit: Unit) -> str:
+    """A figure with its unit, as printed."""
+    text = number(unit.scale * of, unit.decimals)
+    return text if unit.label == "ratio" else f"{text}{NO_BREAK}{_(unit.label)}"

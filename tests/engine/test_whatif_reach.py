@@ -68,6 +68,25 @@ def test_at_a_constant_rate_the_factor_is_a_ratio() -> None:
     assert (found.high[0] - found.low[0]) / 2 == pytest.approx(1.96 * se, rel=0.02)
 
 
+def test_counted_from_now_chance_moves_both_ends() -> None:
+    """At a constant rate a gain of g takes the factor k = 1 / (1 + g m). One death more at x moves
+    what is gained by the years L(x) lived there at both rates, over the person-years."""
+    panel, rate, gain = stationary(0.02), 0.02, 0.1
+    parts = Parts.of(panel)
+    cells = cells_of(parts, slice(None), slice(None))
+    chain = settings("almanac-1-constant-rate")
+    found = uniform(E0, panel, parts, cells, np.array(gain), chain, from_now=True)
+    factor = 1 / (1 + gain * rate)
+    assert_allclose(found.factor, factor, rtol=1e-10)
+    lived = [stationary(of, 1.0).exposure / of for of in (rate, factor * rate)]
+    moved = -(lived[1] - lived[0]) / rate / panel.exposure
+    slope = -1 / (factor * rate) / factor
+    se = np.sqrt(((moved / slope) ** 2 * panel.deaths).sum())
+    assert (found.high - found.low) / 2 == pytest.approx(1.96 * se, rel=0.05)
+    there = uniform(E0, panel, parts, cells, found.now + 0.1, chain)
+    assert_allclose(there.factor, found.factor, rtol=1e-9)
+
+
 def test_at_one_age_it_is_the_deaths_to_avoid() -> None:
     panel = gompertz_panel(seed=1, people=3e6)
     parts = Parts.of(panel)
