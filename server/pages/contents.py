@@ -6,12 +6,14 @@ from typing import ClassVar
 from server.exports.table import Table
 from server.pages import breaks, contents_tables, frames, provisional
 from server.pages.page import Frame, Notice, Page
+from server.results.causes import CauseChoice
 from server.results.changes import ChangesQuestion
 from server.results.contents import Contents, ContentsQuestion, contents
 from server.results.holdings import Holdings
 from server.results.quality import QualityQuestion
 from server.results.questions import (
     DEFAULT_INDICATOR,
+    CausesQuestion,
     ComparisonQuestion,
     CurvesQuestion,
     PopulationYear,
@@ -63,6 +65,7 @@ class ContentsPage(Page):
     questions: tuple[Sentence, ...]
     choice: Choice | None  # None: the edition holds nothing
     basis: tuple[Sentence, ...]
+    causes: str  # over the list of causes of death; empty: there is none
     broken: bool  # breaks or years of shock are stated
     revised: bool  # provisional years were handed in again
     editions: contents_tables.Listing  # of the whole collection: it changes, the figures do not
@@ -85,6 +88,7 @@ def build(session: Session, heading: Heading, question: ContentsQuestion) -> Con
         questions=_questions(heading, question, held, choice) if choice else (),
         choice=choice,
         basis=(*frames.basis(edition.basis), say.quality(_quality(heading, question))),
+        causes=say.cause_list(len(held.causes)) if held.causes else "",
         broken=bool(held.breaks),
         revised=bool(moves.rows),
         editions=_editions(session, heading, erased),
@@ -103,7 +107,8 @@ def _moved_before(session: Session, found: Contents) -> Told:
 def _tables(found: Contents) -> tuple[Table, ...]:
     newest = [contents_tables.areas(found, found.newest)] if found.newest else []
     held = found.holdings
-    return (*newest, *([breaks.table(held.breaks, held.name)] if held.breaks else []))
+    listed = [contents_tables.causes(held.causes)] if held.causes else []
+    return (*newest, *listed, *([breaks.table(held.breaks, held.name)] if held.breaks else []))
 
 
 def _quality(heading: Heading, question: ContentsQuestion) -> str:
@@ -203,17 +208,23 @@ def _questions(
     population = PopulationYearQuestion(this, *asked)
     comparison = ComparisonQuestion(this, that, DEFAULT_INDICATOR, *asked)
     collection, number = heading.collection.code, heading.edition.number
-    return say.questions(
+    who = names.population(this.sex, held.name(this.area))
+    causes = CausesQuestion(
+        this, causes=CauseChoice(), figures=question.figures, settings=question.settings
+    )
+    by_cause = say.causes(address(collection, number, causes), who, this.period)
+    first = say.questions(
         population=address(collection, number, population),
         comparison=address(collection, number, comparison),
         trend=address(collection, number, trend),
         curves=address(collection, number, CurvesQuestion(this, *asked)),
         changes=_changes(heading, question),
-        who=names.population(this.sex, held.name(this.area)),
+        who=who,
         area=held.name(this.area),
         this=this.period,
         that=that.period,
     )
+    return (*first, by_cause) if held.causes else first
 
 
 def _changes(heading: Heading, question: ContentsQuestion) -> tuple[int, str] | None:

@@ -6,7 +6,7 @@ from dataclasses import asdict, dataclass, field
 from engine import settings as named
 from engine.indicators import INDICATORS
 from server.exports.table import Cell, Column, Row, Table
-from server.pages import cells, trend_tables
+from server.pages import cause_choices, cells, trend_tables
 from server.results.contents import Contents
 from server.results.questions import PopulationYear, PopulationYearQuestion, address
 from server.results.series import Series
@@ -15,7 +15,7 @@ from server.sentences import names
 from server.sentences import taking as taking_say
 from server.sentences.dates import day
 from server.sentences.text import _
-from server.store.records import Collection, Edition, UploadFile
+from server.store.records import Cause, Collection, Edition, UploadFile
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,6 +69,33 @@ def _address(found: Contents, newest: Series, index: int) -> str:
         heading.collection.code,
         heading.edition.number,
         PopulationYearQuestion(of, asked.figures, asked.settings),
+    )
+
+
+def causes(listed: Iterable[Cause]) -> Table:
+    """The cause list: each before its parts."""
+    called = {cause.code: cause_choices.name(cause) for cause in listed}
+    return Table(
+        "causes",
+        _("Causes of death this edition counts"),
+        (
+            Column("cause", _("cause")),
+            Column("part_of", _("part of")),
+            Column("codes", _("codes")),
+            Column("kind", _("kind")),
+        ),
+        tuple(
+            Row(
+                (
+                    cause.code,
+                    called.get(cause.parent, ""),
+                    ", ".join(cause.ranges),
+                    say.cause_kind(cause.kind),
+                ),
+                shown=called[cause.code],
+            )
+            for cause in listed
+        ),
     )
 
 

@@ -7,8 +7,9 @@ from server.results.breaks import between, parting
 from server.results.questions import PopulationYear
 from server.sentences.names import listed
 from server.sentences.text import _
-from server.store import areas, breaks, causes, schedules
+from server.store import schedules
 from server.store.connect import Session
+from server.store.content_lists import lists
 from server.store.records import Area, Break, Cause
 
 
@@ -117,14 +118,15 @@ class Holdings:
 
 
 def holdings(session: Session, collection: str, number: int) -> Holdings:
-    """Four statements."""
+    """Two statements."""
     contents = schedules.contents(session, collection, number)
+    listed = lists(session, collection, number)
     return Holdings(
-        areas.listing(session, collection, number),
+        listed.areas,
         contents.sexes,
         contents.periods,
         {PopulationYear(*key): status for key, status in contents.status.items()},
-        breaks.listing(session, collection, number),
+        listed.breaks,
         frozenset(PopulationYear(*key) for key in contents.revised),
-        causes.listing(session, collection, number),
+        listed.causes,
     )

@@ -179,6 +179,33 @@ def questions(
     )
 
 
+def causes(place: str, who: str, year: str) -> Sentence:
+    """Where deaths by cause are told, beside the other questions."""
+    return phrase(
+        _("{question} For example {who} in {year}."),
+        question=Piece(_("Of what do people die here?"), place),
+        who=who,
+        year=year,
+    )
+
+
+def cause_list(count: int) -> str:
+    """Over the fold with the list."""
+    return n_("The one cause of its list", "The {count} causes of its list", count)
+
+
+def cause_kind(key: str) -> str:
+    """What sort of deaths a cause gathers, in the table of the list."""
+    return {
+        "natural": _("natural"),
+        "external": _("external: accident, violence, poisoning"),
+        "undetermined": _("intent not determined"),
+        "ill_defined": _("ill-defined"),
+        "pending": _("may still be given a cause"),
+        "not_underlying": _("not an underlying cause"),
+    }[key]
+
+
 def withdrawing() -> str:
     return _(
         "Withdrawing takes nothing away: the figures can still be read at their addresses, with a "

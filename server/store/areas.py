@@ -1,8 +1,9 @@
 """Areas: their tree is content of an edition, their names are presentation."""
 
 from collections.abc import Iterable
+from typing import Any
 
-from sqlalchemy import and_, func, select
+from sqlalchemy import Select, and_, func, select
 from sqlalchemy.orm import Session
 
 from server.store import collections
@@ -16,10 +17,15 @@ def listing(session: Session, collection: str, number: int) -> tuple[Area, ...]:
 
     An area without a name is called by its code.
     """
-    rows = session.execute(
+    return of_rows(session.execute(statement(collection, number)))
+
+
+def statement(collection: str, number: int) -> Select[str, str, str, bool]:
+    """Reads the areas of an edition; `of_rows` makes them of what it gives."""
+    return (
         select(
             AreaRange.code,
-            func.coalesce(AreaName.name, AreaRange.code),
+            func.coalesce(AreaName.name, AreaRange.code).label("name"),
             AreaRange.parent,
             AreaRange.delivered,
         )
@@ -30,7 +36,11 @@ def listing(session: Session, collection: str, number: int) -> tuple[Area, ...]:
             ),
         )
         .where(AreaRange.collection_id == collections.id_of(collection), AreaRange.holds_in(number))
-    ).all()
+    )
+
+
+def of_rows(rows: Iterable[Any]) -> tuple[Area, ...]:
+    """Areas from rows of `statement`."""
     return in_tree_order(Area(*row) for row in rows)
 
 

@@ -1,6 +1,7 @@
 """Cause lists: the tree is content of an edition, labels and the order of the list presentation."""
 
 from collections.abc import Iterable
+from typing import Any
 
 from sqlalchemy import Select, and_, func, select
 from sqlalchemy.orm import Session
@@ -14,17 +15,20 @@ from server.store.tables import CauseLabel, CauseRange
 def listing(session: Session, collection: str, number: int) -> tuple[Cause, ...]:
     """The cause list of an edition, each cause before its parts, siblings in the order in which
     they were last handed in; empty where the edition has none. One statement."""
-    rows = session.execute(_statement(collection, number)).all()
-    ordered = sorted(rows, key=lambda row: (row.place, row.code))
+    return of_rows(session.execute(statement(collection, number)))
+
+
+def of_rows(rows: Iterable[Any]) -> tuple[Cause, ...]:
+    """Causes from rows of `statement`."""
+    ordered = sorted(rows, key=lambda row: (row[7], row[0]))
     return in_tree_order(
-        Cause(
-            row.code, row.label, row.parent, tuple(row.ranges.split()), row.kind, row.care, row.sex
-        )
-        for row in ordered
+        Cause(code, label, parent, tuple(ranges.split()), kind, care, sex)
+        for code, label, parent, ranges, kind, care, sex, _place in ordered
     )
 
 
-def _statement(collection: str, number: int) -> "Select[str, str, str, str, str, str, str, int]":
+def statement(collection: str, number: int) -> Select[str, str, str, str, str, str, str, int]:
+    """Reads the causes of an edition; `of_rows` makes them of what it gives."""
     return (
         select(
             CauseRange.code,

@@ -14,6 +14,7 @@ from server.results.questions import PopulationYear
 from server.sentences.pieces import plain
 from server.store.connect import Session
 from server.store.heading import heading
+from server.store.records import Cause
 from tests.factories import edition, gompertz_panel, stored_collection, withdrawn
 
 YEARS = ("2001", "2002", "2013", "2014")
@@ -144,3 +145,25 @@ def test_which_edition_stands(
     for number in gone:
         withdrawn(session, number, "isle")
     assert plain(editions_page.build(session, "isle").answer) == said
+
+
+def test_the_list_of_causes_is_folded_and_leads_to_their_page(isle: Session) -> None:
+    plain_page = page(isle)
+    assert plain_page.causes == ""
+    assert not any("Of what do people die" in plain(one) for one in plain_page.questions)
+    panel = gompertz_panel(seed=1)
+    causes = (
+        Cause("body", "Of the body", ranges=("A00-R99",)),
+        Cause("heart", "Heart", "body", ("I00-I99", "R96")),
+        Cause("falls", "Falls", ranges=("W00-W19",), kind="external"),
+    )
+    by_cause = {"north.f.2014": {"heart": panel.deaths}}
+    edition(isle, {"north.f.2014": panel}, causes=causes, by_cause=by_cause)
+    built = page(isle, 2)
+    assert built.causes == "The 3 causes of its list"
+    rows = [(row.shown, *row.cells) for row in built.table("causes").rows]
+    assert rows[1] == ("Heart", "heart", "Of the body", "I00-I99, R96", "natural")
+    assert rows[2][4].startswith("external")
+    link = next(one for one in built.questions if "Of what do people die" in plain(one))
+    href = next(piece.href for piece in link if piece.href)
+    assert href.startswith("/c/isle/2/causes?of=north.f.2014&causes=groups&")

@@ -7,12 +7,13 @@ from dataclasses import replace
 import pytest
 from sqlalchemy.orm import Session
 
-from server.store import causes, digests, editions, schedules
+from server.store import areas, breaks, causes, digests, editions, schedules
 from server.store.causes import in_tree_order, leaves, top_of
 from server.store.connect import transaction
+from server.store.content_lists import lists
 from server.store.errors import Refused
 from server.store.heading import heading
-from server.store.records import Area, Cause, Change, Edition, Key
+from server.store.records import Area, Break, Cause, Change, Edition, Key
 from tests.factories import BASIS, NOON, cells, stored_collection, stored_edition
 
 Counting = Callable[[], AbstractContextManager[list[str]]]
@@ -74,12 +75,12 @@ def test_an_edition_without_causes_has_the_hash_it_had(session: Session) -> None
     """A list is a digest more among those that are hashed, and none is none."""
     plain = stored_edition(session, cells())
     parts = [digests.of_schedule(key, cell) for key, cell in cells().items()]
-    areas = [digests.of_area(Area("a", ""))]
-    assert plain.digest == digests.of_edition([*parts, *areas, digests.of_basis(BASIS)])
+    places = [digests.of_area(Area("a", ""))]
+    assert plain.digest == digests.of_edition([*parts, *places, digests.of_basis(BASIS)])
     with_list = listed(session, *LIST)
     of_causes = map(digests.of_cause, LIST)
     assert with_list.digest == digests.of_edition(
-        [*parts, *areas, digests.of_basis(BASIS), *of_causes]
+        [*parts, *places, digests.of_basis(BASIS), *of_causes]
     )
 
 
@@ -132,3 +133,24 @@ def test_deaths_are_counted_under_leaves_of_a_tree_of_any_depth() -> None:
     deep = (*LIST, Cause("valve", "", "heart"))
     assert [cause.code for cause in leaves(deep)] == ["breast", "harm", "valve"]
     assert top_of(deep)["valve"] == "z-body"
+
+
+def test_the_lists_of_an_edition_are_read_together_as_each_by_itself(
+    session: Session, count_statements: Counting
+) -> None:
+    tree = (Area("w", "Whole", delivered=True), Area("a", "", "w"))
+    told = (
+        Break("", "2002", "coding", "heart", "new rules", 1.25, 0.03),
+        Break("a", "2001", "shock"),
+    )
+    base = Change("saltmarsh", 0, cells(), tree, BASIS, breaks=told, causes=LIST)
+    prepared = editions.prepare(session, base)
+    with transaction(session):
+        editions.write(session, prepared, by="a tester", note="", at=NOON)
+    with count_statements() as statements:
+        found = lists(session, "saltmarsh", 1)
+    assert len(statements) == 1
+    assert found.causes == causes.listing(session, "saltmarsh", 1) == LIST
+    assert found.areas == areas.listing(session, "saltmarsh", 1)
+    assert found.areas[0].delivered is True
+    assert found.breaks == breaks.listing(session, "saltmarsh", 1) == told[::-1]
