@@ -25,18 +25,18 @@ class Series:
     label: str
     x: tuple[float, ...]
     y: Sequence  # None: a gap, never bridged
-    draw: Literal["line", "needles", "bars", "dots", "reaches"] = "line"
+    draw: Literal["line", "needles", "bars", "dots", "reaches", "squares"] = "line"
     sex: Literal["f", "m", "p"] = "f"  # gives the dash of a line
     role: str = "s1"  # colour token s1 ... s7; this is s1, that is s2
     weight: Literal["this", "that", "one", "many"] = "one"
     low: Sequence = ()
     high: Sequence = ()
-    widths: tuple[float, ...] = ()  # of bars, in units of x
+    widths: tuple[float, ...] = ()  # of bars, in units of x; of squares their sides, px
     at: At | Literal["end"] | None = None  # where the label stands; None: not labelled
     short: str = ""  # label at line's end on the phone
     name: str = ""  # in the hover label, where the label on the chart says more than who
     names: tuple[str, ...] = ()  # one name a point, for the hover label
-    provisional: tuple[bool, ...] = ()  # hollow points
+    provisional: tuple[bool, ...] = ()  # hollow points; of squares those below 0
 
 
 @dataclass(frozen=True, slots=True)
@@ -95,7 +95,7 @@ class Chart:
     y_ticks: tuple[float, ...]
     series: tuple[Series, ...]
     described: str = ""  # the sentence for those who do not see the picture
-    size: Literal["low", "std", "tall"] = "std"
+    size: Literal["low", "std", "tall", "rows"] = "std"
     x_ticks: tuple[float, ...] = ()  # of amounts
     y_text: tuple[str, ...] = ()  # texts of the ticks
     y_log: bool = False

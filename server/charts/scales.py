@@ -30,6 +30,24 @@ def log_ticks(low: float, high: float) -> tuple[float, ...]:
     return tuple(10.0**power for power in range(first, last + 1))
 
 
+RATIOS = (1.0, 0.5, 0.8, 1.25, 2.0, 0.67, 1.5, 0.9, 1.1, 0.2, 5.0, 0.1, 10.0, 0.33, 3.0)
+
+
+def ratio_ticks(low: float, high: float, most: int = 5) -> tuple[float, ...]:
+    """Round ratios from `low` to `high`, both above 0: 1, and those that lie far enough apart.
+
+    >>> ratio_ticks(0.45, 1.4), ratio_ticks(0.86, 1.15)
+    ((0.5, 0.8, 1.0, 1.25), (0.9, 1.0, 1.1))
+    """
+    apart = math.log(high / low) / (most + 1)
+    found: list[float] = []
+    for one in RATIOS:
+        near = any(abs(math.log(one / other)) < apart for other in found)
+        if low <= one <= high and not near and len(found) < most:
+            found.append(one)
+    return tuple(sorted(found))
+
+
 def decimals(shown: tuple[float, ...], most: int = 6) -> int:
     """As many decimals as all ticks of a scale need.
 

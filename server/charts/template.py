@@ -73,6 +73,8 @@ class Measure:
     narrow: bool = False
 
 
-WIDE = Measure(872, {"low": 270, "std": 380, "tall": 500}, 52, 64, 34, 46, 14.5, 12.5)
-NARROW = Measure(354, {"low": 240, "std": 300, "tall": 400}, 46, 12, 32, 44, 13.5, 0, narrow=True)
-PRINT = Measure(640, {"low": 160, "std": 200, "tall": 230}, 40, 60, 34, 46, 12, 9)
+WIDE = Measure(872, {"low": 270, "std": 380, "tall": 500, "rows": 560}, 52, 64, 34, 46, 14.5, 12.5)
+NARROW = Measure(
+    354, {"low": 240, "std": 300, "tall": 400, "rows": 560}, 46, 12, 32, 44, 13.5, 0, narrow=True
+)
+PRINT = Measure(640, {"low": 160, "std": 200, "tall": 230, "rows": 430}, 40, 60, 34, 46, 12, 9)

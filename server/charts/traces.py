@@ -2,6 +2,7 @@
 
 import html
 from collections.abc import Iterator
+from dataclasses import replace
 from itertools import groupby
 from typing import Any
 
@@ -131,6 +132,24 @@ def _reaches(series: Series, chart: Chart) -> Iterator[Trace]:
         "y": _short(series.y),
         "cliponaxis": False,
         "marker": {"size": 8, "color": f"@{series.role}", "symbol": "circle"},
+        "error_x": _whiskers(replace(series, y=series.x), "@ink", 1),
+    } | _hover(series, chart)
+
+
+def _squares(series: Series, chart: Chart) -> Iterator[Trace]:
+    """Amounts by their size; those below 0 are open, which grey print shows."""
+    yield {
+        "type": "scatter",
+        "mode": "markers",
+        "x": _short(series.x),
+        "y": _short(series.y),
+        "cliponaxis": False,
+        "marker": {
+            "symbol": "square",
+            "size": [_six(side) for side in series.widths],
+            "color": ["@ground" if below else f"@{series.role}" for below in series.provisional],
+            "line": {"color": f"@{series.role}", "width": 1.2},
+        },
     } | _hover(series, chart)
 
 
@@ -140,6 +159,7 @@ _DRAW = {
     "bars": _bars,
     "dots": _dots,
     "reaches": _reaches,
+    "squares": _squares,
 }
 
 

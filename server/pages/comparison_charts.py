@@ -4,6 +4,7 @@ from typing import Literal
 
 import numpy as np
 
+from engine.ages import AgeGrid, Array
 from engine.indicators import find
 from server.charts.chart import At, Chart, Series
 from server.charts.scales import decimals as decimals_of
@@ -11,7 +12,7 @@ from server.charts.scales import ticks
 from server.pages.comparison_contributions import Printed, printed, whole_group_withheld
 from server.pages.comparison_tables import RADIX, gone, pair
 from server.pages.drawing import LONGER_LIFE, WHOLE_LIFE, at_age, places, values
-from server.results.comparison import Comparison, Side
+from server.results.compared import Comparison, Side
 from server.results.explaining import DECOMPOSED, Contribution
 from server.sentences import comparison as say
 from server.sentences import contributions as ages_say
@@ -30,7 +31,11 @@ def axis(found: Comparison) -> tuple[float, float]:
 
 def asked(found: Comparison, key: str) -> say.Answer:
     return say.Answer(
-        find(key), found.this.estimates[key], found.that.estimates[key], found.difference[key]
+        find(key),
+        found.this.estimates[key],
+        found.that.estimates[key],
+        found.difference[key],
+        exact=found.kind == "revision",
     )
 
 
@@ -98,7 +103,7 @@ def _curve(
         label,
         places(starts[inside]),
         values(RADIX * table.lx[inside]),
-        sex=side.of.sex,  # type: ignore[arg-type]
+        sex=side.sex,  # type: ignore[arg-type]
         role=role,
         weight=weight,
         at=at,
@@ -118,11 +123,11 @@ def life_expectancy(found: Comparison, source: str) -> Chart | None:
         of=printed("e0"),
         finding=ages_say.by_age(asked(found, "e0"), span, carried),
         unit=_(
-            "Years that each age group adds, {this} against {that}, with {level} % intervals;"
-            " hatched: against the rest",
+            "Years that each age group adds, {this} against {that}{intervals}; hatched: against the"
+            " rest",
             this=both.this.whole,
             that=both.that.whole,
-            level=round(100 * found.settings.level),
+            intervals=_with_intervals(found),
         ),
         source=source,
     )
@@ -147,9 +152,9 @@ def unevenness(found: Comparison, source: str) -> Chart | None:
             age,
         ),
         unit=_(
-            "Thousandths that each age group adds to relative unevenness (H), with {level} %"
-            " intervals; hatched: against the rest",
-            level=round(100 * found.settings.level),
+            "Thousandths that each age group adds to relative unevenness (H){intervals}; hatched:"
+            " against the rest",
+            intervals=_with_intervals(found),
         ),
         source=source,
     )
@@ -171,15 +176,22 @@ def asked_for(found: Comparison, source: str) -> Chart | None:
         of=of,
         finding=ages_say.of_asked(asked(found, key), span, carried),
         unit=_(
-            "What each age group adds to {what}, {this} against {that}, with {level} % intervals;"
-            " hatched: against the rest",
+            "What each age group adds to {what}, {this} against {that}{intervals}; hatched: against"
+            " the rest",
             what=_("{label}, {unit}", label=label, unit=of.unit) if of.unit else label,
             this=both.this.whole,
             that=both.that.whole,
-            level=round(100 * found.settings.level),
+            intervals=_with_intervals(found),
         ),
         source=source,
     )
+
+
+def _with_intervals(found: Comparison) -> str:
+    """What a unit line says of intervals; nothing of a revision, which has none."""
+    if found.kind == "revision":
+        return ""
+    return _(", with {level} % intervals", level=round(100 * found.settings.level))
 
 
 def turning(found: Comparison, part: Contribution) -> int:
@@ -189,23 +201,29 @@ def turning(found: Comparison, part: Contribution) -> int:
 
 
 def most(found: Comparison, part: Contribution) -> tuple[str, float]:
-    """The shortest run of groups that holds at least half of the difference, the one with most
-    where several are as short; and what it holds."""
-    starts, total = found.groups.starts, float(part.by_group.sum())
+    """The shortest run of groups that holds at least half of the difference, and what it holds."""
+    return shortest_run(found.groups, part.by_group)
+
+
+def shortest_run(groups: AgeGrid, by_group: Array) -> tuple[str, float]:
+    """The shortest run of groups that holds at least half of the sum, the one with most where
+    several are as short; and what it holds."""
+    starts, total = groups.starts, float(by_group.sum())
     ends = (*starts[1:], max(starts[-1] + 5, 105))
-    sums = np.concatenate([[0.0], np.cumsum(part.by_group)])
+    sums = np.concatenate([[0.0], np.cumsum(by_group)])
     best = (float(ends[-1]), 0.0, 0, len(starts))
     for begin in range(len(starts)):
         for end in range(begin + 1, len(starts) + 1):
             held = (sums[end] - sums[begin]) / total if total else 0.0
             if held >= 0.5:
                 best = min(best, (float(ends[end - 1] - starts[begin]), -held, begin, end))
+                break
     _width, _held, begin, end = best
     carried = float(sums[end] - sums[begin])
     if end == len(starts):
         return _("{first} and over", first=starts[begin]), carried
     if end - begin == 1:
-        return found.groups.labels[begin], carried
+        return groups.labels[begin], carried
     return _("{first} to {last}", first=starts[begin], last=starts[end] - 1), carried
 
 
@@ -218,7 +236,8 @@ def _bars(
     finding: str,
     unit: str,
     source: str,
-) -> Chart:
+) -> Chart | None:
+    """None where no age adds anything: nothing differs."""
     groups, (_first, top) = found.groups, axis(found)
     widths = np.append(groups.widths[:-1], min(10.0, top - groups.open_age))
     mids = np.array(groups.starts, float) + widths / 2
@@ -229,6 +248,8 @@ def _bars(
     )
     ends = np.concatenate([[0.0], y, low, high])
     bottom, ceiling = float(np.nanmin(ends)), float(np.nanmax(ends))
+    if not ceiling > bottom:
+        return None
     room = 0.06 * (ceiling - bottom)
     shown = ticks(bottom, ceiling)
     return Chart(

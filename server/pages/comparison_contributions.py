@@ -10,7 +10,7 @@ from engine.ages import Array
 from engine.indicators import find
 from server.exports.table import Cell, Column, Row, Table
 from server.pages.cells import columns, gap, number, triple, withheld
-from server.results.comparison import Comparison
+from server.results.compared import Comparison
 from server.results.explaining import DECOMPOSED, Contribution, decomposable
 from server.sentences import contributions as say
 from server.sentences import kinds as kinds_say

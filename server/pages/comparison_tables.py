@@ -7,10 +7,11 @@ import numpy as np
 from engine.estimates import Reason
 from engine.indicators import GROUPS, find
 from engine.settings import span
+from engine.standards.remaining_years import REFERENCES
 from server.exports.table import Cell, Column, Gap, Row, Table
 from server.pages.cells import columns, number, triple, withheld
 from server.pages.population_year_tables import about, called, what_it_counts, why_missing
-from server.results.comparison import Comparison, Side
+from server.results.compared import Comparison, Side
 from server.results.estimating import COMPARED, USUAL
 from server.results.loading import Shared
 from server.results.questions import PopulationYear
@@ -19,15 +20,39 @@ from server.sentences import names
 from server.sentences.text import _
 
 RADIX = 100_000
+# why a figure has no interval where the page says so at its head
+UNSAID = {"revision": (Reason.NO_SAMPLING_INTERVAL,), "standard": (Reason.A_STANDARD,)}
 
 
-def named(found: Comparison, of: PopulationYear | Shared) -> say.Named:
-    periods = of.periods if isinstance(of, Shared) else span(of.period, found.settings.years)
-    return say.Named(of.sex, found.holdings.name(of.area), names.years(periods))
+def named(found: Comparison, side: Side) -> say.Named:
+    """A side in words: what is left of a whole, the collection or the edition it stands in where
+    the other one stands in another."""
+    place = side.place
+    if place.standard:
+        return say.Named("p", "", "", table=_(REFERENCES[place.standard].label))
+    area = place.holdings.name(place.of.area)
+    if place.rest:
+        area = _("the rest of {area}", area=area)
+    if found.kind == "elsewhere":
+        area = _("{area} ({collection})", area=area, collection=place.heading.collection.name)
+    edition = place.heading.edition.number if found.kind == "revision" else 0
+    years = names.years(span(place.of.period, found.settings.years))
+    return say.Named(place.of.sex, area, years, edition)
+
+
+def plain_name(found: Comparison, of: PopulationYear) -> str:
+    """A population-year of the edition in words, whatever stands in its place on the page."""
+    years = names.years(span(of.period, found.settings.years))
+    return say.Named(of.sex, found.holdings.name(of.area), years).whole
+
+
+def counted_twice(found: Comparison, of: Shared) -> str:
+    """Whose deaths are part of both sides."""
+    return say.Named(of.sex, found.holdings.name(of.area), names.years(of.periods)).whole
 
 
 def pair(found: Comparison) -> say.Pair:
-    return say.Pair(named(found, found.this.of), named(found, found.that.of))
+    return say.Pair(named(found, found.this), named(found, found.that))
 
 
 def figures(found: Comparison) -> Table:
@@ -65,19 +90,33 @@ def _figures(
         *columns("that", _head(both.short(both.that), found.that), 1),
         *columns("difference", _("difference"), 1, signed=True),
     )
-    note = _(
-        "Under each figure its {level} % interval, which covers chance in deaths only."
-        " Difference: {this} less {that}, taken before rounding.",
-        level=round(100 * found.settings.level),
-        this=both.this.whole,
-        that=both.that.whole,
-    )
+    note = _note(found, both)
     shown = {
         key: [found.this.estimates[key], found.that.estimates[key], found.difference[key]]
         for key in keys
     }
-    note = " ".join([note, *why_missing(shown, found.settings, said)])
+    hushed = (*said, *UNSAID.get(found.kind, ()))
+    note = " ".join([note, *why_missing(shown, found.settings, hushed)])
     return Table(name, title, heads, tuple(_figure_row(found, key) for key in keys), note)
+
+
+def _note(found: Comparison, both: say.Pair) -> str:
+    sides = {"this": both.this.whole, "that": both.that.whole}
+    level = round(100 * found.settings.level)
+    if found.kind == "revision":
+        return _(
+            "Under the figures of each edition their {level} % intervals, which cover chance in"
+            " deaths only. Difference: {this} less {that}, taken before rounding; it is a revision"
+            " of the same counts and has no interval.",
+            level=level,
+            **sides,
+        )
+    return _(
+        "Under each figure its {level} % interval, which covers chance in deaths only."
+        " Difference: {this} less {that}, taken before rounding.",
+        level=level,
+        **sides,
+    )
 
 
 def _head(label: str, side: Side) -> str:

@@ -7,9 +7,11 @@ from numpy.typing import NDArray
 
 from engine import decomposition, indicators, shift
 from engine.ages import AgeGrid, Array
+from engine.estimates import Estimate
 from engine.indicators import Indicator
 from engine.panel import Panel
 from engine.settings import Settings
+from server.results.cause_parts import CausePair, CauseParts, Years, cause_parts
 
 DECOMPOSED = ("e0", "H")  # whatever else is asked for
 Codes = NDArray[np.str_]
@@ -24,6 +26,9 @@ class Sides:
     shared: Panel | None
     codes: tuple[Codes, Codes]
     groups: AgeGrid  # those of pictures
+    by_chance: bool = True  # False: the same people counted again
+    causes: CausePair | None = None
+    thresholds: tuple[Estimate, Estimate] | None = None  # ages up to which fewer deaths even lives
 
 
 @dataclass(frozen=True, slots=True)
@@ -48,6 +53,26 @@ class Two:
 
 
 @dataclass(frozen=True, slots=True)
+class Halves:
+    """A difference shared between early deaths, below an age, and late ones, with limits."""
+
+    values: Array  # [early, late]
+    low: Array
+    high: Array
+
+
+@dataclass(frozen=True, slots=True)
+class LongerEven:
+    """Whether lives were longer, and of more even length, by deaths before and after the age up to
+    which fewer deaths make length of life more even."""
+
+    age: int  # the start of an age group, nearest to the mean of both sides' threshold
+    thresholds: tuple[float, float]
+    longer: Halves  # life expectancy
+    even: Halves  # H
+
+
+@dataclass(frozen=True, slots=True)
 class Explained:
     """All that is known of what a difference is made of."""
 
@@ -56,13 +81,15 @@ class Explained:
     unevenness: Two | None  # of H: through years lost per death, through life expectancy
     crude: Two | None  # of the crude rate: owed to the ages of the people, to their death rates
     kinds: shift.ShiftSqueeze
+    longer_even: LongerEven | None
+    causes: CauseParts | None  # of the indicator asked for, or of e0 where that has none
 
 
 def explain(
-    asked: str, finite: set[str], sides: Sides, between: Panel | None, settings: Settings
+    asked: str, finite: set[str], sides: Sides, between: Years | None, settings: Settings
 ) -> Explained:
-    """`finite` are the keys whose difference has a value; `between` [year, age] are all years from
-    that to this, where there are some between and all are held."""
+    """`finite` are the keys whose difference has a value; `between` are all years from that to
+    this, where there are some between and all are held."""
     keys = dict.fromkeys((*DECOMPOSED, asked))
     parts = {
         key: _contribution(indicators.find(key), sides, settings) for key in keys if key in finite
@@ -74,6 +101,8 @@ def explain(
         unevenness=_unevenness(sides, settings) if "H" in finite else None,
         crude=_crude(sides) if "cdr" in finite else None,
         kinds=shift.shift_squeeze(sides.this, sides.that, settings, shared=sides.shared),
+        longer_even=_longer_even(sides, settings) if set(DECOMPOSED) <= finite else None,
+        causes=_causes(found, finite, sides, between, settings),
     )
 
 
@@ -93,17 +122,11 @@ def _contribution(indicator: Indicator, sides: Sides, settings: Settings) -> Con
     else:
         parts = decomposition.stepwise(indicator, *both, settings)
         order = float(parts.order_share)
-    low, high = decomposition.contribution_limits(
-        indicator,
-        *both,
-        settings,
-        streams=sides.codes,
-        shared=None if sides.shared is None else sides.shared.counts,
-        groups=sides.groups,
-    )
+    by_group = sides.this.grid.regroup(parts.by_age, sides.groups)
+    low, high = _limits(indicator, sides, sides.groups, settings)
     return Contribution(
         parts.by_age,
-        sides.this.grid.regroup(parts.by_age, sides.groups),
+        by_group,
         low,
         high,
         float(parts.remainder),
@@ -112,10 +135,65 @@ def _contribution(indicator: Indicator, sides: Sides, settings: Settings) -> Con
     )
 
 
-def _path(indicator: Indicator, between: Panel | None, settings: Settings) -> Array | None:
+def _limits(
+    indicator: Indicator, sides: Sides, groups: AgeGrid, settings: Settings
+) -> tuple[Array, Array]:
+    """Of the sums over groups; nan where chance has no part."""
+    if not sides.by_chance:
+        gone = np.full(len(groups), np.nan)
+        return gone, gone
+    return decomposition.contribution_limits(
+        indicator,
+        sides.this,
+        sides.that,
+        settings,
+        streams=sides.codes,
+        shared=None if sides.shared is None else sides.shared.counts,
+        groups=groups,
+    )
+
+
+def _longer_even(sides: Sides, settings: Settings) -> LongerEven | None:
+    """None where a side's threshold is not known, or the ages have no group that begins there."""
+    if sides.thresholds is None:
+        return None
+    here, there = (float(one.value) for one in sides.thresholds)
+    middle = (here + there) / 2
+    if not np.isfinite(middle):
+        return None
+    age = min(sides.groups.starts[1:], key=lambda start: abs(start - middle))
+    halves = AgeGrid((0, age))
+    found = []
+    for key in DECOMPOSED:
+        one = indicators.find(key)
+        by_age = decomposition.contributions(one, sides.this, sides.that, settings).by_age
+        ends = _limits(one, sides, halves, settings)
+        found.append(Halves(sides.this.grid.regroup(by_age, halves), *ends))
+    return LongerEven(age, (here, there), *found)
+
+
+def _causes(
+    asked: Indicator, finite: set[str], sides: Sides, between: Years | None, settings: Settings
+) -> CauseParts | None:
+    one = asked if asked.smooth and decomposable(asked) else indicators.find("e0")
+    if sides.causes is None or one.key not in finite:
+        return None
+    return cause_parts(
+        one,
+        sides.this,
+        sides.that,
+        sides.causes,
+        sides.groups,
+        between if one is asked else None,
+        settings,
+        by_chance=sides.by_chance,
+    )
+
+
+def _path(indicator: Indicator, between: Years | None, settings: Settings) -> Array | None:
     if between is None or not (indicator.smooth and decomposable(indicator)):
         return None
-    by_age = decomposition.along(indicator, between, settings).by_age
+    by_age = decomposition.along(indicator, between.panel, settings).by_age
     return by_age if np.isfinite(by_age).all() else None
 
 

@@ -82,16 +82,15 @@ def _less(whole: Loaded | None, part: Loaded | None) -> Loaded | None:
     grid = whole.panel.grid.common(part.panel.grid)
     more, fewer = whole.panel.regroup(grid), part.panel.regroup(grid)
     stand_in = whole.protected or part.protected
-    counts = {
-        name: _difference(getattr(more, name), getattr(fewer, name), stand_in)
-        for name in ("deaths", "exposure")
-    }
-    if any(one is None for one in counts.values()):
+    deaths = _difference(more.deaths, fewer.deaths, stand_in)
+    exposure = _difference(more.exposure, fewer.exposure, stand_in)
+    if deaths is None or exposure is None:
         return None
     beside: dict[str, Any] = {"whole": replace(more, whole=None, standard=None)}
     if more.counted is not None or fewer.counted is not None:
         beside["counted"] = np.maximum(more.counts - fewer.counts, 0.0)
-    panel = replace(more, **counts, births=np.maximum(more.births - fewer.births, 0.0), **beside)
+    births = np.maximum(more.births - fewer.births, 0.0)
+    panel = replace(more, deaths=deaths, exposure=exposure, births=births, **beside)
     gone = whole.withheld_on(grid) | part.withheld_on(grid)
     return replace(
         whole,

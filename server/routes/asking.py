@@ -1,6 +1,6 @@
 """What all routes share: the session, the right each declares, and an address read and pinned."""
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from typing import Annotated, Any, Generic, TypeVar
 
@@ -152,12 +152,20 @@ def newest(session: Session, collection: str) -> int:
     )
 
 
-def answer(request: Request, asked: Asked[Asks], build: Callable[[], Page]) -> Response:
-    """The page or its twin; `build` is called only where nobody holds the bytes yet."""
+def answer(
+    request: Request,
+    asked: Asked[Asks],
+    build: Callable[[], Page],
+    *,
+    beside: Sequence[Heading] = (),
+) -> Response:
+    """The page or its twin; `build` is called only where nobody holds the bytes yet. `beside` are
+    the headings of other editions that it rests on."""
     return respond(
         request,
         build,
-        tag_parts=(asked.heading,),  # all that can change it, beside its address and the build
+        # all that can change it, beside its address and the build
+        tag_parts=(asked.heading, *beside),
         form=asked.form,
         table=asked.table,
     )
@@ -168,9 +176,10 @@ def pinned(
     build: Callable[[Session, Heading, Asks], Page],
     *,
     complete: Callable[[Session, Heading, Asks], Asks] | None = None,
+    beside: Callable[[Session, Heading, Asks], Sequence[Heading]] | None = None,
 ) -> APIRouter:
     """The four addresses of a view: with and without an edition's number, the page and its twins.
-    `complete` as in `ask`."""
+    `complete` as in `ask`; `beside` finds the headings of other editions that the page rests on."""
     router = APIRouter(dependencies=[needs(Right.READ)])
 
     def show(
@@ -181,7 +190,13 @@ def pinned(
         twin: str = "",
     ) -> Response:
         asked = ask(request, session, view, collection, edition, twin=twin, complete=complete)
-        return answer(request, asked, lambda: build(session, asked.heading, asked.question))
+        others = beside(session, asked.heading, asked.question) if beside else ()
+        return answer(
+            request,
+            asked,
+            lambda: build(session, asked.heading, asked.question),
+            beside=others,
+        )
 
     for place in (
         f"/c/{{collection}}/{view.view}",

@@ -2,6 +2,7 @@
 
 from server.pages import comparison
 from server.results.questions import ComparisonQuestion
+from server.results.sides import completed, headings
 from server.routes.asking import pinned
 
-router = pinned(ComparisonQuestion, comparison.build)
+router = pinned(ComparisonQuestion, comparison.build, complete=completed, beside=headings)

@@ -31,20 +31,27 @@ class Named:
     sex: str
     area: str  # its name
     period: str
+    edition: int = 0  # told where both are one population-year of two editions
+    table: str = ""  # a printed life table, which stands in the place of people
 
     @property
     def who(self) -> str:
         """Inside a sentence, without the year."""
-        return names.population(self.sex, self.area)
+        return self.table or names.population(self.sex, self.area)
 
     @property
     def at_head(self) -> str:
-        return names.population_first(self.sex, self.area)
+        return names.first_capital(self.table) or names.population_first(self.sex, self.area)
 
     @property
     def whole(self) -> str:
         """Inside a sentence, with the year: men of Northlade in 2014."""
-        return _("{who} in {year}", who=self.who, year=self.period)
+        if self.table:
+            return self.table
+        dated = _("{who} in {year}", who=self.who, year=self.period)
+        if not self.edition:
+            return dated
+        return _("{who}, edition {number}", who=dated, number=self.edition)
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,20 +64,30 @@ class Pair:
     @property
     def same_people(self) -> bool:
         """One area and sex: only the year differs."""
-        return (self.this.sex, self.this.area) == (self.that.sex, self.that.area)
+        both = (self.this, self.that)
+        return len({(one.sex, one.area, one.edition, one.table) for one in both}) == 1
 
     @property
     def same_year(self) -> bool:
         return self.this.period == self.that.period
 
+    @property
+    def revised(self) -> bool:
+        """One population-year of two editions."""
+        return self.this.edition != self.that.edition
+
     def short(self, side: Named) -> str:
         """A side as a label: no more words than tell it from the other."""
+        if side.table:
+            return _("printed table")
+        if self.revised:
+            return _("edition {number}", number=side.edition)
         parts = []
         if self.this.area != self.that.area:
             parts.append(side.area)
         if self.this.sex != self.that.sex or not parts:
             parts.append(names.sex(side.sex))
-        if not self.same_year:
+        if not self.same_year or self.that.table:
             parts.append(side.period)
         return ", ".join(parts)
 
@@ -83,10 +100,18 @@ class Answer:
     this: Estimate
     that: Estimate
     difference: Estimate
+    exact: bool = False  # the same people counted again: chance has no part in the difference
 
     @property
     def kind(self) -> Movement:
-        return movement(self.difference, self.indicator.unit)
+        found = movement(self.difference, self.indicator.unit)
+        if not (self.exact and found is Movement.WITHOUT_INTERVAL):
+            return found
+        unit = self.indicator.unit
+        value = unit.scale * float(self.difference.value)
+        if number(abs(value), unit.decimals) == number(0, unit.decimals):
+            return Movement.TOO_SMALL
+        return Movement.MORE if value > 0 else Movement.LESS
 
     @property
     def clear(self) -> bool:
@@ -114,6 +139,8 @@ def answer(pair: Pair, of: Answer, why_not: str) -> Sentence:
             ),
             this=pair.this.whole,
         )
+    if pair.revised:
+        return _revision(pair, of, inside)
     if of.kind in (Movement.NOT_CLEAR, Movement.TOO_SMALL):
         return _no_clear_difference(pair, of, inside)
     parts: dict[str, Piece | str] = {
@@ -136,6 +163,36 @@ def answer(pair: Pair, of: Answer, why_not: str) -> Sentence:
         )
     )
     return phrase(text, label=label, this=pair.this.whole, that=pair.that.whole, **parts)
+
+
+def _revision(pair: Pair, of: Answer, label: str) -> Sentence:
+    """Of two editions of one population-year: exact, since the same people were counted again."""
+    who = Named(pair.this.sex, pair.this.area, pair.this.period).whole
+    sides = {"here": shown(of.this, of.indicator.unit), "there": shown(of.that, of.indicator.unit)}
+    editions = {"this": str(pair.this.edition), "that": str(pair.that.edition)}
+    if of.kind is Movement.TOO_SMALL:
+        return phrase(
+            _(
+                "Between editions {that} and {this} {label} of {who} did not move as printed:"
+                " {here} against {there}. It is a revision, in which chance has no part."
+            ),
+            label=label,
+            who=who,
+            **sides,
+            **editions,
+        )
+    text = (
+        _(
+            "Edition {this} puts {label} of {who} {amount} higher than edition {that}: {here}"
+            " against {there}. It is a revision, in which chance has no part."
+        )
+        if of.difference.value > 0
+        else _(
+            "Edition {this} puts {label} of {who} {amount} lower than edition {that}: {here}"
+            " against {there}. It is a revision, in which chance has no part."
+        )
+    )
+    return phrase(text, label=label, who=who, amount=_amount(of), **sides, **editions)
 
 
 def _no_clear_difference(pair: Pair, of: Answer, label: str) -> Sentence:
@@ -181,6 +238,15 @@ def _life_expectancy(pair: Pair, of: Answer, parts: dict[str, Piece | str]) -> S
             other=pair.that.period,
             **parts,
         )
+    if pair.that.table:
+        return phrase(
+            _(
+                "{this} in {year} could expect {amount} of life than the {that} gives {interval}:"
+                " {here} against {there}."
+            ),
+            year=pair.this.period,
+            **parts,
+        )
     if pair.same_year:
         return phrase(
             _(
@@ -223,11 +289,13 @@ def evenness(pair: Pair, of: Answer) -> Sentence:
     """Whether lives were of more equal length; `of` is H."""
     if of.kind in (Movement.UNKNOWN, Movement.WITHOUT_INTERVAL):
         return ()
+    if of.exact and of.kind is Movement.TOO_SMALL:
+        return ()
     parts = {
         "here": shown(of.this, of.indicator.unit),
         "there": shown(of.that, of.indicator.unit),
-        "this": pair.this.who if pair.same_year else pair.this.whole,
-        "that": pair.that.who if pair.same_year else pair.that.whole,
+        "this": pair.this.whole if pair.revised or not pair.same_year else pair.this.who,
+        "that": pair.that.whole if pair.revised or not pair.same_year else pair.that.who,
     }
     if of.kind in (Movement.NOT_CLEAR, Movement.TOO_SMALL):
         return phrase(
@@ -237,6 +305,19 @@ def evenness(pair: Pair, of: Answer) -> Sentence:
             ),
             **parts,
         )
+    if pair.that.table:
+        text = (
+            _(
+                "Length of life was less even among {this} than in the {that}: relative unevenness"
+                " {here} against {there}."
+            )
+            if of.kind in HIGHER
+            else _(
+                "Length of life was more even among {this} than in the {that}: relative unevenness"
+                " {here} against {there}."
+            )
+        )
+        return phrase(text, **parts)
     later = pair.same_people and pair.this.period > pair.that.period
     texts = {
         (True, True): _(

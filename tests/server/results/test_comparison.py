@@ -91,7 +91,7 @@ def test_exchanging_the_two_turns_the_sign(isle: Session) -> None:
 def test_two_open_ages_are_brought_to_one_and_named(isle: Session) -> None:
     found = asked(isle, "cape.f.2014", "north.f.2014")
     assert found.grid == SHORT
-    assert [one.code for one in found.regrouped] == ["north.f.2014"]
+    assert [one.of.code for one in found.regrouped] == ["north.f.2014"]
     assert set(found.explained.contributions) == {"e0"}
     assert found.difference["H"].reason == Reason.OPEN_GROUP_TOO_LARGE
 

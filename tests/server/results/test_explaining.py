@@ -16,6 +16,7 @@ from engine.panel import Panel
 from engine.settings import find as named
 from engine.shift import PARTS
 from engine.standards import STANDARDS
+from server.results.cause_parts import Years
 from server.results.comparison import Comparison, comparison
 from server.results.explaining import Explained, Sides, decomposable, explain
 from server.results.questions import ComparisonQuestion, PopulationYear
@@ -167,7 +168,7 @@ COURSE = {  # infants gain first, the old later
 
 def along(of: str, *years: str) -> Explained:
     panels = [COURSE[year] for year in years]
-    return explain(of, {of}, sides(panels[-1], panels[0]), Panel.stack(panels), PLAIN)
+    return explain(of, {of}, sides(panels[-1], panels[0]), Years(Panel.stack(panels), None), PLAIN)
 
 
 @pytest.mark.parametrize("of", ["e0", "H"])
@@ -194,9 +195,9 @@ def test_what_steps_counts_births_or_has_no_value_between_has_no_path() -> None:
     assert along("lower_quartile", *YEARS).path is None
     births = [complete(COURSE[year]) for year in YEARS]
     ends = sides(births[-1], births[0])
-    assert explain("imr", {"imr"}, ends, Panel.stack(births), PLAIN).path is None
+    assert explain("imr", {"imr"}, ends, Years(Panel.stack(births), None), PLAIN).path is None
     gone = replace(COURSE["2011"], deaths=np.full(len(FIVE), np.nan))
-    between = Panel.stack([COURSE["2010"], gone, COURSE["2013"]])
+    between = Years(Panel.stack([COURSE["2010"], gone, COURSE["2013"]]), None)
     ends = sides(COURSE["2013"], COURSE["2010"])
     assert explain("e0", {"e0"}, ends, between, PLAIN).path is None
 
@@ -204,7 +205,7 @@ def test_what_steps_counts_births_or_has_no_value_between_has_no_path() -> None:
 @pytest.fixture
 def isle(session: Session, monkeypatch: pytest.MonkeyPatch) -> Session:
     """Women of the north through four years; men lack one, the cape has coarser groups in one."""
-    monkeypatch.setattr("server.results.comparison.COMPARED", ("e0",))  # no other figure is read
+    monkeypatch.setattr("server.results.compared.COMPARED", ("e0",))  # no other figure is read
     panels = {f"{who}.{year}": COURSE[year] for year in YEARS for who in ("north.f", "cape.f")}
     panels |= {f"north.m.{year}": as_men(COURSE[year]) for year in YEARS if year != "2011"}
     panels["north.f.2014"] = COURSE["2013"]
