@@ -278,6 +278,67 @@ def packed(found: Truth) -> bytes:
     return gzip.compress(_lines(rows, "|", "\r").encode(), mtime=0)
 
 
+CAUSES = {  # leaf of the short list, codes as this office writes them, hundredths of the deaths
+    "cancer-lung": (("C34.1", 9), ("c349", 6)),
+    "cancer-breast": (("C50.9", 8),),
+    "stroke": (("I64", 14),),
+    "respiratory-other": (("J84.1", 5),),
+    "suicide": (("X70.-", 3),),
+    "pending": (("R99", 3),),
+    "heart-attack": (("I21 Akuter Myokardinfarkt", 30), ("I25.1†", 0)),
+}
+GROUPS = {"C00-C97": ("C34.1", "c349", "C50.9"), "I20-I25": ("I21 Akuter Myokardinfarkt", "I25.1†")}
+LAST = "I25.1†"  # has what is left
+
+
+def by_code(found: Truth, area: str, sex: str, year: int, place: int) -> dict[str, float]:
+    """Deaths of one age under each code; together those of the truth."""
+    dead = float(found["deaths", area, sex, year][place])
+    shares = {code: part for codes in CAUSES.values() for code, part in codes}
+    counts = {
+        code: 0.0 if code == "X70.-" and STARTS[place] < 10 else float(dead * part // 100)
+        for code, part in shares.items()
+    }
+    counts[LAST] = dead - sum(counts.values())
+    return counts
+
+
+def causes(found: Truth) -> bytes:
+    """Deaths by code of ICD-10 in several ways of writing it, sums of chapters and of all causes
+    among the rows, semicolons, decimal commas, and no row where nobody died."""
+    rows: list[Row] = [("Gestorbene nach Todesursache, Geschlecht und Alter", *[""] * 5)]
+    rows.append(("Bundesland", "Jahr", "Geschlecht", "Alter", "Todesursache (ICD-10)", "Gestorbene"))
+    for area, name in AREAS.items():
+        for year in YEARS:
+            for sex, word in (("f", "weiblich"), ("m", "männlich")):
+                for place, age in enumerate(AGES):
+                    counts = by_code(found, area, sex, year, place)
+                    sums = {
+                        group: sum(counts[code] for code in codes)
+                        for group, codes in GROUPS.items()
+                    }
+                    every = {"Insgesamt": sum(counts.values())} | sums | counts
+                    label = age.replace("85+", "85 und älter").replace("-", "–")
+                    rows += [
+                        (name, year, word, label, code, _grouped(count, 1, ",", ""))
+                        for code, count in every.items()
+                        if count or code == "Insgesamt"
+                    ]
+    rows.append(("Quelle: Statistisches Amt", *[""] * 5))
+    return _lines(rows, ";").encode("cp1252")
+
+
+def people_alone(found: Truth) -> bytes:
+    """The people of the same areas, as plainly as can be."""
+    rows: list[Row] = [("area", "year", "sex", "age", "population")]
+    for area, name in AREAS.items():
+        for year in YEARS:
+            for sex in SEXES:
+                lived = found["person_years", area, sex, year]
+                rows += [(name, year, sex, age, n) for age, n in zip(AGES, lived, strict=True)]
+    return _lines(rows, ",").encode()
+
+
 def files() -> Iterator[tuple[str, bytes]]:
     """Name and content of each."""
     found = truth()
@@ -296,6 +357,8 @@ def files() -> Iterator[tuple[str, bytes]]:
     yield "08-pasted.tsv", pasted(found)
     yield "09-dates-for-ages.xlsx", dates_for_ages(found)
     yield "10-packed.csv.gz", packed(found)
+    yield "11-by-cause.csv", causes(found)
+    yield "11-people.csv", people_alone(found)
 
 
 if __name__ == "__main__":

@@ -126,4 +126,14 @@ STORIES = {
         {"counts": "10-packed.csv.gz"},
         provisional=("2022",),
     ),
+    "11": Story(
+        "Deaths by cause, with codes of ICD-10 written in five ways, sums of groups and of all "
+        "causes among the rows, decimal commas, and no row where nobody died. The causes add up to "
+        "the truth, and the sums are not counted.",
+        {"deaths": "11-by-cause.csv", "population": "11-people.csv"},
+        answers={"deaths": {"cause_list": "short"}},
+        asked=("cause_list",),
+        warned=("notes_left_out",),
+        areas=NAMED,
+    ),
 }

@@ -10,7 +10,7 @@ from server.actions.recoding import recoded
 from server.intake.parsing import Handed, Parsed, parse
 from server.intake.recognising.look import look, said_in
 from server.store.records import Key, Vector
-from tests.ugly.make import FOLDER, SEXES, STARTS, YEARS, truth
+from tests.ugly.make import CAUSES, FOLDER, SEXES, STARTS, YEARS, by_code, truth
 from tests.ugly.stories import STORIES, Story
 
 TRUTH = truth()
@@ -62,7 +62,7 @@ def test_the_counts_are_those_of_the_truth(story: Story) -> None:
     counts = {
         (key.measure, story.areas[key.area], key.sex, int(key.period)): cell
         for key, cell in cells.items()
-        if key.measure in ("deaths", "person_years")
+        if key.measure in ("deaths", "person_years") and not key.cause
     }
     assert set(counts) == set(TRUTH)
     assert len(counts) == 2 * 3 * len(SEXES) * len(YEARS)
@@ -84,6 +84,30 @@ def by_year(
         for (measure, area, _, year), values in counts.items():
             found[measure, area, year][place] += float(values.sum())
     return found
+
+
+def test_the_causes_are_those_of_the_truth() -> None:
+    """Each code in its cause; a cause that has no vector has no deaths."""
+    story = STORIES["11"]
+    cells = read(story).cells
+    for (measure, area, sex, year), dead in TRUTH.items():
+        if measure != "deaths":
+            continue
+        code = next(code for code, name in story.areas.items() if name == area)
+        key = Key(code, sex, str(year), "deaths")
+        together = np.zeros(len(dead))
+        for cause, codes in CAUSES.items():
+            expected = np.array(
+                [
+                    sum(by_code(TRUTH, area, sex, year, place)[one] for one, _ in codes)
+                    for place in range(len(dead))
+                ]
+            )
+            cell = cells.get(key._replace(cause=cause))
+            np.testing.assert_array_equal(0 * dead if cell is None else cell.values, expected)
+            together += expected
+        np.testing.assert_array_equal(together, dead)
+    assert {key.cause for key in cells} == {"", *CAUSES}
 
 
 def test_those_without_an_age_lie_near_where_they_belong() -> None:
