@@ -8,6 +8,7 @@ import numpy as np
 from engine.ages import Array
 from server.intake.cells import YEARS, Flags, Ints
 from server.intake.ledger import Ledger
+from server.intake.problems import Text
 from server.intake.schedules import Block
 
 
@@ -23,7 +24,7 @@ class Course:
 
     @property
     def labels(self) -> tuple[str, ...]:
-        return ("all ages", *self.block.grid.labels)
+        return (Text("all ages"), *self.block.grid.labels)
 
 
 def courses(ledger: Ledger, measure: str) -> Iterator[Course]:

@@ -11,7 +11,7 @@ from engine.panel import SEXES
 from server.intake.cells import SEX_UNSTATED, Flags, Ints, parts_of, place_of, sexes_of
 from server.intake.labels import NOT_STATED
 from server.intake.mapping import WITHOUT_AGE
-from server.intake.problems import Value
+from server.intake.problems import Text, Value
 from server.intake.schedules import Aside, Block
 from server.intake.standing import Standing
 
@@ -102,10 +102,10 @@ class Ledger:
     def named(self, place: int) -> dict[str, Value]:
         """Area, sex and year of a place, as values of a fault."""
         area, sex, year = parts_of(place)
-        return {**self.named_area(area), "sex": (*SEXES, NOT_STATED)[sex], "year": str(year)}
+        return {**self.named_area(area), "sex": (*SEXES, Text(NOT_STATED))[sex], "year": str(year)}
 
     def named_area(self, area: int) -> dict[str, Value]:
-        return {"area": (*self.codes, NOT_STATED)[area]}
+        return {"area": (*self.codes, Text(NOT_STATED))[area]}
 
     def states(self, places: Ints) -> Flags:
         """Whether a place says of which area and sex its counts are."""

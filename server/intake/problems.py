@@ -29,6 +29,50 @@ def plain(text: str, /, **values: object) -> str:
     return text.format(**values) if values else text
 
 
+class Text(str):
+    """A text of the catalogue among the values of a problem, put into the reader's language when
+    the problem is shown. As a plain text it is the English.
+
+    >>> Text("hidden columns: {columns}", columns="B, C")
+    'hidden columns: B, C'
+    """
+
+    text: str
+    values: Mapping[str, "Value"]
+
+    def __new__(cls, text: str, **values: "Value") -> "Text":
+        made = super().__new__(cls, plain(text, **values))
+        made.text, made.values = text, values
+        return made
+
+    def worded(self, translate: Translate) -> str:
+        return translate(self.text, **_shown(self.values, translate, figure))
+
+
+def _shown(values: Mapping[str, "Value"], translate: Translate, show: Show) -> dict[str, object]:
+    """Values as they are put into a text."""
+    return {
+        name: value.worded(translate)
+        if isinstance(value, Text)
+        else value
+        if isinstance(value, str)
+        else show(value)
+        for name, value in values.items()
+    }
+
+
+def _stored(value: "Value") -> object:
+    if not isinstance(value, Text):
+        return value
+    return {"text": value.text, "values": {of: _stored(one) for of, one in value.values.items()}}
+
+
+def _restored(value: object) -> "Value":
+    if not isinstance(value, dict):
+        return cast("Value", value)
+    return Text(value["text"], **{of: _restored(one) for of, one in value["values"].items()})
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Kind:
     """One entry of the registry of checks: what kind of problem it finds."""
@@ -95,7 +139,7 @@ class Problem:
 
     def worded(self, translate: Translate = plain, show: Show = figure) -> Texts:
         """Found, expected and remedy in the reader's language; `show` prints the numbers."""
-        values = {k: v if isinstance(v, str) else show(v) for k, v in self.values.items()}
+        values = _shown(self.values, translate, show)
         found = translate(self.texts.found, **values)
         if self.others:
             found = translate(
@@ -170,13 +214,15 @@ class Problem:
             "rows": self.rows,
             "others": self.others,
             "texts": [self.texts.found, self.texts.expected, self.texts.remedy],
-            "values": dict(self.values),
+            "values": {name: _stored(value) for name, value in self.values.items()},
         }
 
     @classmethod
     def from_json(cls, stored: Mapping[str, object]) -> "Problem":
         fields = dict(stored)
         fields["texts"] = Texts(*cast(list[str], fields["texts"]))
+        values = cast(Mapping[str, object], fields["values"])
+        fields["values"] = {name: _restored(value) for name, value in values.items()}
         return cls(**fields)  # type: ignore[arg-type]
 
 

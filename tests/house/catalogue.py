@@ -21,7 +21,7 @@ from server.sentences.languages import texts
 from server.sentences.names import brief
 
 ROOMS = ("server", "engine")
-CALLS = {"_": 1, "n_": 2, "translate": 1}  # how many of their first arguments are texts
+CALLS = {"_": 1, "n_": 2, "translate": 1, "Text": 1}  # how many of their first arguments are texts
 # fields of registries that are read by people; others are keys, codes and calculations. A source
 # stands as it was published
 READ = {

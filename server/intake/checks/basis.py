@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from server.intake.checks.check import Check
 from server.intake.checks.series import years_worded
-from server.intake.problems import Fault, Problem
+from server.intake.problems import Fault, Problem, Text
 from server.intake.standing import Standing
 from server.store.records import Basis, Break, Key
 
@@ -15,18 +15,18 @@ CORRESPOND = (
     "(2014), Principles and Recommendations for a Vital Statistics System, Revision 3"
 )
 _FIELDS = {
-    "people": "whose deaths are counted",
-    "dated_by": "what decides the year of a death",
-    "population": "what population means",
-    "population_date": "the date of the population",
+    "people": Text("whose deaths are counted"),
+    "dated_by": Text("what decides the year of a death"),
+    "population": Text("what population means"),
+    "population_date": Text("the date of the population"),
 }
 _ANSWERS = {
-    "residents": "those who live in the area",
-    "occurrences": "those who died in the area",
-    "death": "the day of death",
-    "registration": "the day of registration",
-    "midyear": "people in the middle of the year",
-    "person_years": "person-years",
+    "residents": Text("those who live in the area"),
+    "occurrences": Text("those who died in the area"),
+    "death": Text("the day of death"),
+    "registration": Text("the day of registration"),
+    "midyear": Text("people in the middle of the year"),
+    "person_years": Text("person-years"),
 }
 
 
@@ -102,7 +102,11 @@ def _changes(bases: Bases) -> Iterator[Fault]:
 def _unnamed(bases: Bases) -> Iterator[Fault]:
     before, years = bases.standing.basis, rebased(bases)
     if before and years and bases.own.vintage == before.vintage:
-        said = f"“{before.vintage}” as before" if before.vintage else "no name of it"
+        said = (
+            Text("“{vintage}” as before", vintage=before.vintage)
+            if before.vintage
+            else Text("no name of it")
+        )
         yield Fault(values={"said": said, "years": _years(years)})
 
 
@@ -117,7 +121,11 @@ def _in_part(bases: Bases) -> Iterator[Fault]:
         for one in (*bases.breaks, *bases.standing.breaks)
     )
     if kept and not stated:
-        values = {"vintage": bases.own.vintage or "no name", "years": _years(kept), "first": first}
+        values = {
+            "vintage": bases.own.vintage or Text("no name"),
+            "years": _years(kept),
+            "first": first,
+        }
         yield Fault(values=values)
 
 

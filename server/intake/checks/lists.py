@@ -9,7 +9,7 @@ from server.intake.causes.own import read_care, read_kind, read_only_sex
 from server.intake.checks.check import Check
 from server.intake.labels import ALL_AGES, read_age, read_sex, read_year
 from server.intake.lists import MOST_ROWS, NEEDED, Line, SmallTable, number
-from server.intake.problems import Fault, Problem
+from server.intake.problems import Fault, Problem, Text
 from server.intake.successions import COUNTS
 from server.store.records import BREAKS, CARE, CAUSE_KINDS
 
@@ -53,50 +53,59 @@ def _sex(text: str) -> bool:
     return read_sex(text) in ("f", "m", "p")
 
 
-_CODE = "1 to 32 letters A–Z, digits, full stops, hyphens or underscores"
-_YEAR = "a year of four digits, such as 2014"
+_CODE = Text("1 to 32 letters A–Z, digits, full stops, hyphens or underscores")
+_YEAR = Text("a year of four digits, such as 2014")
 _FIELDS = (
     _Field("areas", "code", is_code, _CODE, needed=True),
     _Field("areas", "becomes", is_code, _CODE, needed=True),
     _Field("areas", "parent", is_code, _CODE),
     _Field("areas", "from", _year, _YEAR),
     _Field("areas", "to", _year, _YEAR),
-    _Field("areas", "share", _share, "a number from 0 to 1, such as 0.25 or 1/4"),
-    _Field("areas", "counts", COUNTS.__contains__, f"nothing, or one of {', '.join(COUNTS)}"),
-    _Field("areas", "sex", _sex, "f or m, or nothing for both"),
-    _Field("areas", "age", _age, "an age group, such as 5-9 or 85+, or nothing for all ages"),
-    _Field("breaks", "area", is_code, "the code of an area, or nothing for every area"),
+    _Field("areas", "share", _share, Text("a number from 0 to 1, such as 0.25 or 1/4")),
+    _Field(
+        "areas",
+        "counts",
+        COUNTS.__contains__,
+        Text("nothing, or one of {known}", known=", ".join(COUNTS)),
+    ),
+    _Field("areas", "sex", _sex, Text("f or m, or nothing for both")),
+    _Field("areas", "age", _age, Text("an age group, such as 5-9 or 85+, or nothing for all ages")),
+    _Field("breaks", "area", is_code, Text("the code of an area, or nothing for every area")),
     _Field("breaks", "year", _year, _YEAR, needed=True),
     _Field(
         "breaks",
         "kind",
         (*BREAKS, NONE).__contains__,
-        f"one of {', '.join(BREAKS)}; or {NONE}, which ends the breaks of that area and year",
+        Text(
+            "one of {known}; or {none}, which ends the breaks of that area and year",
+            known=", ".join(BREAKS),
+            none=NONE,
+        ),
         needed=True,
     ),
     _Field("breaks", "cause", is_code, _CODE),
-    _Field("breaks", "ratio", _positive, "a number above 0, counts after over counts before"),
+    _Field("breaks", "ratio", _positive, Text("a number above 0, counts after over counts before")),
     _Field("causes", "code", is_code, _CODE, needed=True),
     _Field("causes", "parent", is_code, _CODE),
     _Field(
         "causes",
         "kind",
         lambda text: read_kind(text) is not None,
-        f"nothing, or one of {', '.join(CAUSE_KINDS)}",
+        Text("nothing, or one of {known}", known=", ".join(CAUSE_KINDS)),
     ),
     _Field(
         "causes",
         "care",
         lambda text: read_care(text) is not None,
-        f"nothing, or one of {', '.join(CARE)}",
+        Text("nothing, or one of {known}", known=", ".join(CARE)),
     ),
     _Field(
         "causes",
         "sex",
         lambda text: read_only_sex(text) is not None,
-        "f or m, or nothing for both",
+        Text("f or m, or nothing for both"),
     ),
-    _Field("breaks", "ratio_error", _error, "a number of at least 0, the standard error"),
+    _Field("breaks", "ratio_error", _error, Text("a number of at least 0, the standard error")),
 )
 
 

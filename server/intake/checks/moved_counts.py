@@ -6,7 +6,7 @@ from engine.ages import AgeGrid
 from server.intake.checks.check import Check
 from server.intake.checks.successions import CHECKS as OF_ROWS
 from server.intake.checks.successions import Said
-from server.intake.problems import Fault, Problem
+from server.intake.problems import Fault, Problem, Text
 from server.store.records import Key
 
 RATES = ("deaths", "person_years")  # without which nothing can be computed
@@ -122,12 +122,12 @@ def _unshared(said: Said) -> Iterator[Fault]:
 
 
 _WORDS = {
-    "deaths": "deaths",
-    "counted_deaths": "deaths",
-    "person_years": "population",
-    "births": "births",
-    "stillbirths": "stillbirths",
-    "neonatal_deaths": "deaths before 28 days",
+    "deaths": Text("deaths"),
+    "counted_deaths": Text("deaths"),
+    "person_years": Text("population"),
+    "births": Text("births"),
+    "stillbirths": Text("stillbirths"),
+    "neonatal_deaths": Text("deaths before 28 days"),
 }
 
 

@@ -9,7 +9,7 @@ from engine.ages import Array
 from server.intake.cells import Flags, Ints, parts_of
 from server.intake.checks.check import Check, several
 from server.intake.ledger import Ledger
-from server.intake.problems import Fault, Value
+from server.intake.problems import Fault, Text, Value
 from server.intake.rated import Rated, rated
 
 SURE = 5.0  # standard deviations of chance in deaths, which are taken as twice as uneven as Poisson
@@ -130,7 +130,7 @@ def _of_rates(ledger: Ledger) -> Iterator[Fault]:
         apart.off[together.off] = False  # said already
 
         def of_all(at: int, one: Rated = one, men: Ints = men, odd: Odd = together) -> Fault:
-            label: dict[str, Value] = {"age": "all ages"}
+            label: dict[str, Value] = {"age": Text("all ages")}
             return one.fault(ledger, int(men[at]), 0, label | odd.values(at, RATES))
 
         def of_one(

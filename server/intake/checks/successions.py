@@ -7,7 +7,7 @@ from itertools import combinations
 from engine.ages import AgeGrid
 from server.intake.checks.check import Check
 from server.intake.lists import SmallTable
-from server.intake.problems import Fault, Value
+from server.intake.problems import Fault, Text, Value
 from server.intake.standing import Standing
 from server.intake.successions import (
     FIRST,
@@ -47,11 +47,12 @@ class Said:
 
 
 def _span(one: Becoming) -> str:
-    return f"{'the beginning' if one.first == FIRST else one.first} to {_last(one)}"
+    first = Text("the beginning") if one.first == FIRST else one.first
+    return Text("{first} to {last}", first=first, last=_last(one))
 
 
 def _last(one: Becoming) -> str:
-    return "the end" if one.last == "9999" else one.last
+    return Text("the end") if one.last == "9999" else one.last
 
 
 def _unknown(said: Said) -> Iterator[Fault]:

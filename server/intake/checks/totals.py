@@ -8,7 +8,7 @@ from server.intake.cells import YEARS, parts_of, place_of, sexes_of
 from server.intake.checks.check import Check
 from server.intake.labels import NOT_STATED
 from server.intake.ledger import Ledger, common_grid, summed
-from server.intake.problems import Fault, Value
+from server.intake.problems import Fault, Text, Value
 from server.intake.schedules import MEASURES, Aside
 
 
@@ -36,7 +36,7 @@ def _differs(
         given, count = ageless.get(place, 0.0), sum(n for _, n in beside)
         total = np.array([total.sum() + given])
         together = np.array([together.sum() + without + count + bare])
-        labels = ("all ages",)
+        labels = (Text("all ages"),)
     else:
         together = together.copy()
         for first, _, count in groups:

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 from server.intake.forms.found import Found
 from server.intake.mapping import NUMBERS, Form, numbers_of
-from server.intake.problems import Fault
+from server.intake.problems import Fault, Text
 
 FIELDS = ("age", "sex", "year", "cause", "number")
 
@@ -76,30 +76,30 @@ def wrong(form: Form, role: str, taken: Sequence[str]) -> Iterator[Found]:
 
     if not form.across:
         if form.across_columns:
-            yield found("headings with a meaning, and no matter said to stand in headings")
+            yield found(Text("headings with a meaning, and no matter said to stand in headings"))
         return
     if set(form.across) - set(FIELDS) or len(set(form.across)) != len(form.across):
-        yield found("a matter that cannot stand in headings, or one named twice")
+        yield found(Text("a matter that cannot stand in headings, or one named twice"))
         return
     if not sound(form):
-        yield found("a heading without a value for each matter")
+        yield found(Text("a heading without a value for each matter"))
         return
     if not form.across_columns:
-        yield found("no heading whose meaning is said")
+        yield found(Text("no heading whose meaning is said"))
         return
     for field in form.across:
         if field in taken:
-            yield found("a matter that stands in headings and elsewhere too", field)
+            yield found(Text("a matter that stands in headings and elsewhere too"), field)
     numbers = {form.across_number}
     if "number" in form.across:
         place = form.across.index("number") + 1
         numbers = {column[place] for column in form.across_columns}
     for number in sorted(numbers - set(numbers_of(role))):
-        yield found("a number that this kind of file does not hold", number)
+        yield found(Text("a number that this kind of file does not hold"), number)
     for number in NUMBERS:
         if number in taken:
-            yield found("a number in one column beside headings that part it", number)
+            yield found(Text("a number in one column beside headings that part it"), number)
     cells = [column[1:] for column in form.across_columns]
     if len(set(cells)) < len(cells):
         doubled = next(cell for cell in cells if cells.count(cell) > 1)
-        yield found("two headings that mean the same", " ".join(doubled))
+        yield found(Text("two headings that mean the same"), " ".join(doubled))

@@ -4,7 +4,7 @@ import re
 from dataclasses import dataclass
 
 from server.intake.forms.found import Found
-from server.intake.problems import Fault
+from server.intake.problems import Fault, Text
 
 # names as a form states them, and as readers know them
 ENCODINGS = {
@@ -107,7 +107,7 @@ def _guessed(content: bytes, guess: str, first: int) -> Decoded:
     row = content.count(b"\n", 0, first) + 1
     start = content.rfind(b"\n", 0, first) + 1
     line = content[max(start, first - SHOWN // 2) : first + SHOWN // 2].split(b"\n")[0]
-    values = {"encoding": ENCODINGS[guess], "text": line.decode(guess, "replace").strip()}
+    values = {"encoding": Text(ENCODINGS[guess]), "text": line.decode(guess, "replace").strip()}
     fault = Fault(row=row, values=values)
     return Decoded(read.body, guess, sure=False, found=(Found("encoding_guessed", fault),))
 
@@ -127,7 +127,7 @@ def _unfit(content: bytes, encoding: str, start: int, *, mark: bool = False) -> 
     line = "\n".encode(encoding)
     fault = Fault(
         row=content.count(line, 0, start) + 1,
-        values={"byte": f"0x{content[start]:02x}", "encoding": ENCODINGS[encoding]},
+        values={"byte": f"0x{content[start]:02x}", "encoding": Text(ENCODINGS[encoding])},
     )
     body = _lines(content.decode(encoding, "replace").encode())
     return Decoded(body, encoding, mark=mark, sure=False, found=(Found("wrong_encoding", fault),))

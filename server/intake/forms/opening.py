@@ -9,18 +9,18 @@ from server.intake.forms.sheet_rows import BETWEEN, SheetRows
 from server.intake.forms.unpacking import unpacked
 from server.intake.forms.workbooks import Tab, workbook
 from server.intake.mapping import Form
-from server.intake.problems import Fault
+from server.intake.problems import Fault, Text
 
 FOREIGN = {
-    b"\xd0\xcf\x11\xe0": "a spreadsheet of the old kind, or one locked with a password",
-    b"%PDF": "a PDF",
-    b"{\\rtf": "a text document",
-    b"BZh": "a file packed with bzip2",
-    b"\xfd7zXZ": "a file packed with xz",
-    b"7z\xbc\xaf": "a file packed with 7-Zip",
-    b"PAR1": "a Parquet file",
+    b"\xd0\xcf\x11\xe0": Text("a spreadsheet of the old kind, or one locked with a password"),
+    b"%PDF": Text("a PDF"),
+    b"{\\rtf": Text("a text document"),
+    b"BZh": Text("a file packed with bzip2"),
+    b"\xfd7zXZ": Text("a file packed with xz"),
+    b"7z\xbc\xaf": Text("a file packed with 7-Zip"),
+    b"PAR1": Text("a Parquet file"),
 }
-NO_TEXT = "bytes of value 0, which no text has"
+NO_TEXT = Text("bytes of value 0, which no text has")
 
 
 @dataclass(frozen=True, slots=True)

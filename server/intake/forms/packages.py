@@ -10,7 +10,7 @@ from dataclasses import dataclass
 from xml.parsers import expat
 
 from server.intake.forms.found import Found
-from server.intake.problems import Fault
+from server.intake.problems import Fault, Text
 
 ZIP = b"PK\x03\x04"
 LISTED = b"PK\x01\x02"  # stands before each part in the list of all, which is read at once
@@ -95,17 +95,17 @@ def local(tag: str) -> str:
 
 
 def _refuse(*_: object) -> None:
-    raise Broken("a document type")
+    raise Broken(Text("a document type"))
 
 
 def package(content: bytes) -> Package | Found:
     """A zipped file whose parts may be read, or why not. Nothing is unpacked here."""
     if content.count(LISTED) > MOST_PARTS:
-        return Found("broken_workbook", Fault(values={"part": "the list of its parts"}))
+        return Found("broken_workbook", Fault(values={"part": Text("the list of its parts")}))
     try:
         parts = zipfile.ZipFile(io.BytesIO(content))
     except (zipfile.BadZipFile, OSError, ValueError, RuntimeError):  # of versions it cannot read
-        return Found("broken_workbook", Fault(values={"part": "the whole"}))
+        return Found("broken_workbook", Fault(values={"part": Text("the whole")}))
     listed = parts.infolist()
     size = sum(part.file_size for part in listed)
     if size > MOST_XML:
@@ -117,5 +117,5 @@ def package(content: bytes) -> Package | Found:
             return Found("packed_too_tightly", Fault(values=values))
     closed = any(part.flag_bits & 1 or part.compress_type not in KINDS for part in listed)
     if closed:
-        return Found("broken_workbook", Fault(values={"part": "the whole"}))
+        return Found("broken_workbook", Fault(values={"part": Text("the whole")}))
     return Package(parts)

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 from server.intake.forms.found import Found
 from server.intake.forms.sheet_rows import BETWEEN, Merged, SheetRows, letters, place
-from server.intake.problems import Fault
+from server.intake.problems import Fault, Text
 
 MOST_FILLED = 1_000_000  # cells of merged ranges
 
@@ -28,11 +28,11 @@ def told(cells: SheetRows, heading: int) -> Iterator[Found]:
         if row >= heading:
             yield Found("formula_without_value", Fault(row=row, values={"cell": cell}))
     if rows := [row for row in cells.hidden if row >= heading]:
-        values = {"what": "hidden rows"}
+        values = {"what": Text("hidden rows")}
         fault = Fault(row=rows[0], last_row=rows[-1], rows=len(rows), values=values)
         yield Found("hidden_cells", fault)
     if columns := [letters(column) for column in cells.hidden_columns if column <= cells.width]:
-        values = {"what": f"hidden columns: {', '.join(columns)}"}
+        values = {"what": Text("hidden columns: {columns}", columns=", ".join(columns))}
         yield Found("hidden_cells", Fault(values=values))
 
 

@@ -7,6 +7,7 @@ from dataclasses import dataclass, field
 from server.intake.forms.dates import date_of
 from server.intake.forms.packages import Broken, Package, local
 from server.intake.forms.unpacking import MOST_UNPACKED
+from server.intake.problems import Text
 
 BETWEEN = "\x1f"  # between fields: a sign that no cell can hold
 LAST_ROW, LAST_COLUMN = 1_048_576, 16_384  # of any sheet
@@ -177,7 +178,7 @@ class _Reader:
         before, number = self._row, given.get("r")
         self._row = int(number) if number else before + 1
         if not before < self._row <= LAST_ROW:
-            raise Broken("rows out of order")
+            raise Broken(Text("rows out of order"))
         self._hidden = given.get("hidden") in ("1", "true")
         self._column, self._cells = 0, []
 
@@ -185,7 +186,7 @@ class _Reader:
         reference = given.get("r")
         column = place(reference)[1] if reference else self._column + 1
         if not self._column < column <= LAST_COLUMN:
-            raise Broken("cells out of order")
+            raise Broken(Text("cells out of order"))
         self._column = column
         self._kind, self._style = given.get("t", "n"), int(given.get("s", "0"))
         self._formula, self._value = False, []
@@ -239,7 +240,7 @@ class _Reader:
         try:
             return self._book.texts[int(value)]
         except IndexError as error:
-            raise Broken("texts") from error
+            raise Broken(Text("texts")) from error
 
     def _note_formula(self, *, kept: bool) -> None:
         self.sheet.formulas += 1

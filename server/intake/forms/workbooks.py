@@ -21,11 +21,11 @@ from server.intake.forms.sheet_rows import (
 )
 from server.intake.forms.unpacking import MOST_UNPACKED
 from server.intake.mapping import Form
-from server.intake.problems import Fault
+from server.intake.problems import Fault, Text
 
 HEAD = 64_000  # bytes of a sheet in which its size is looked for
 _SIZE = re.compile(rb'dimension ref="[A-Z]+\d+:([A-Z]+\d+)"')
-NO_WORKBOOK = "a zipped file that is no workbook"
+NO_WORKBOOK = Text("a zipped file that is no workbook")
 
 
 @dataclass(frozen=True, slots=True)
@@ -60,7 +60,7 @@ def workbook(content: bytes, form: Form) -> Workbook:
     try:
         return _opened(opened, form)
     except Broken as error:
-        return Workbook(found=(Found("broken_workbook", Fault(values={"part": str(error)})),))
+        return Workbook(found=(Found("broken_workbook", Fault(values={"part": error.args[0]})),))
     except TooWide as error:
         fault = Fault(row=error.args[0], values={"most": MOST_COLUMNS})
         return Workbook(found=(Found("too_many_columns", fault),))
@@ -98,8 +98,9 @@ def _other_kind(book: Package) -> str:
     """What the package is where it is no workbook of XML."""
     names = book.parts.namelist()
     if "mimetype" in names:
-        return "an OpenDocument file"
-    return "a binary workbook" if any(name.endswith("workbook.bin") for name in names) else ""
+        return Text("an OpenDocument file")
+    binary = any(name.endswith("workbook.bin") for name in names)
+    return Text("a binary workbook") if binary else ""
 
 
 def _tabs(book: Package, main: str) -> tuple[tuple[Tab, ...], bool, dict[str, str]]:
@@ -168,9 +169,9 @@ def _beside(book: Package, tabs: tuple[Tab, ...]) -> list[Found]:
     """What a workbook holds that is not looked at."""
     hidden = [tab.name for tab in tabs if tab.hidden and tab.rows]
     told = {
-        "macros, which are not run": book.has(r"vbaProject"),
-        "links to other files, which are not followed": book.has(r"externalLinks/[^/]+$"),
-        f"hidden sheets: {', '.join(hidden)}": len(hidden),
+        Text("macros, which are not run"): book.has(r"vbaProject"),
+        Text("links to other files, which are not followed"): book.has(r"externalLinks/[^/]+$"),
+        Text("hidden sheets: {sheets}", sheets=", ".join(hidden)): len(hidden),
     }
     return [
         Found("beside_the_sheet", Fault(values={"what": what}))

@@ -4,7 +4,7 @@ import json
 
 from server.intake.checks import KINDS
 from server.intake.checks.check import LISTED, listed
-from server.intake.problems import Fault, Problem
+from server.intake.problems import Fault, Problem, Text
 from server.sentences.text import _, speaking
 
 
@@ -34,6 +34,20 @@ def test_every_word_but_the_users_own_passes_through_the_catalogue() -> None:
         assert words.remedy.endswith("⟧")
         assert problem(**THREE).rows_worded(_) == "⟦1200 to 1202⟧"
         assert problem(others=4, values={"text": "x"}).worded(_).found.startswith("⟦⟦“x”⟧ and 4")
+
+
+def test_texts_that_fill_a_finding_are_of_the_catalogue_too() -> None:
+    """Put into the reader's language when it is shown, also out of a report that was kept."""
+    hidden = Text("hidden columns: {columns}", columns="B, C")
+    one = problem(values={"text": hidden, "other": Text("all ages"), "count": 3})
+    assert one.found == "“hidden columns: B, C”"
+    kept = Problem.from_json(json.loads(json.dumps(one.to_json())))
+    assert kept == one
+    with speaking("pseudo"):
+        assert one.worded(_).found == kept.worded(_).found == "⟦“⟦hidden columns: B, C⟧”⟧"
+        assert problem(values={"text": "all ages"}).worded(_).found == "⟦“all ages”⟧"  # a user's
+    with speaking("es"):
+        assert "todas las edades" in problem(values={"text": Text("all ages")}).worded(_).found
 
 
 def test_texts_of_users_are_never_filled_in_twice() -> None:
