@@ -11,6 +11,7 @@ import pytest
 from httpx2 import Response
 from starlette.testclient import TestClient
 
+from engine.indicators import GROUPS
 from seed_scenarios import quillmere
 from seed_scenarios.quillmere_counts import REGIONS, WHOLE
 from server.accounts.viewer import LOCAL
@@ -20,6 +21,8 @@ from server.actions.map_upload import map_upload
 from server.actions.receive_upload import receive_upload
 from server.app import create_app
 from server.config import Config
+from server.sentences import text
+from server.sentences.languages import OTHERS, texts, translated
 from server.store.connect import make_engine, sessions
 from tests.house.crawl import read, walk
 
@@ -34,8 +37,18 @@ SYMBOLS = {"edagger", "median", "mode", "almanac", "ageing_rate"}  # keys, as in
 
 
 @pytest.fixture(scope="module")
+def asked() -> Iterator[set[str]]:
+    """Every text that pages pass through the catalogue while they are walked."""
+    said: set[str] = set()
+    with pytest.MonkeyPatch.context() as patched:
+        bracketed = text.bracketed
+        patched.setattr(text, "bracketed", lambda one: said.add(one) or bracketed(one))
+        yield said
+
+
+@pytest.fixture(scope="module")
 def pages(
-    demonstration: Path, tmp_path_factory: pytest.TempPathFactory
+    asked: set[str], demonstration: Path, tmp_path_factory: pytest.TempPathFactory
 ) -> Iterator[dict[str, Response]]:
     """All pages in the made-up language: the island, and one upload with faults."""
     folder = shutil.copytree(demonstration, tmp_path_factory.mktemp("pseudo") / "data")
@@ -81,11 +94,11 @@ def test_every_kind_of_page_was_reached(pages: dict[str, Response]) -> None:
             assert found, f"no page links to a {view}{twin}"
 
 
-def without_catalogue(text: str) -> str:
+def without_catalogue(said: str) -> str:
     """What is left when ⟦...⟧, which may hold others, is taken out."""
-    while (shorter := re.sub(r"⟦[^⟦⟧]*⟧", " ", text)) != text:
-        text = shorter
-    return text
+    while (shorter := re.sub(r"⟦[^⟦⟧]*⟧", " ", said)) != said:
+        said = shorter
+    return said
 
 
 def known_words() -> set[str]:
@@ -113,3 +126,15 @@ def test_every_word_comes_from_the_catalogue(pages: dict[str, Response]) -> None
             assert "⟦" in answer.text, address
             found |= dict.fromkeys(bare_words(answer.text), address)
     assert found == {}
+
+
+@pytest.mark.parametrize("code", OTHERS)
+def test_every_text_shown_is_translated(
+    pages: dict[str, Response], asked: set[str], code: str
+) -> None:
+    """Texts that are looked up or made by the code, which no list of texts can hold."""
+    sources = {one.source for group in GROUPS for one in group.indicators}
+    said = {one for one in asked - sources if re.search(r"[^\W\d_]{2,}", one)}
+    assert len(said) > 1_000
+    known = texts(code)
+    assert [one for one in sorted(said) if one not in known and translated(code, one) == one] == []
