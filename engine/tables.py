@@ -84,42 +84,6 @@ def from_rates(grid: AgeGrid, mx: Array, ax: Array) -> LifeTable:
         return _assemble(grid, mx, ax, qx)
 
 
-def from_qx(grid: AgeGrid, qx: Array, ax: Array) -> LifeTable:
-    """The table of given probabilities of dying; mx = qx / (n - (n - ax) qx).
-
-    Shape:   qx, ax [..., age], broadcast. The open group's qx is taken as 1 and its mx as 1 / ax.
-    Missing: nan in, nan out.
-    Raises:  ValueError where the ages differ from the grid's, or a probability is outside 0 to 1.
-    Source:  Preston, Heuveline & Guillot (2001), Demography, ch. 3.
-    """
-    qx, ax = np.broadcast_arrays(qx, ax)
-    _require_ages(grid, qx=qx)
-    n, q, a = grid.widths[:-1], qx[..., :-1], ax[..., :-1]
-    if np.any((np.real(q) < 0) | (np.real(q) > 1)):
-        raise ValueError(
-            "qx has a value outside 0 to 1; probabilities of dying lie between the two"
-        )
-    with np.errstate(all="ignore"):
-        mx = np.concatenate([q / (n - (n - a) * q), 1 / ax[..., -1:]], axis=-1)
-        return _assemble(grid, mx, ax, q)
-
-
-def from_lx(grid: AgeGrid, lx: Array, ax: Array) -> LifeTable:
-    """The table of given survivors, of any radix; qx = 1 - l(x+n) / l(x), or 1 where l(x) = 0.
-
-    Shape:   lx, ax [..., age], broadcast; ax of the open group is the expectation of life there.
-    Missing: nan in, nan out.
-    Raises:  ValueError where the ages differ from the grid's, or lx rises with age.
-    Source:  Preston, Heuveline & Guillot (2001), Demography, ch. 3.
-    """
-    _require_ages(grid, lx=lx)
-    if np.any(np.diff(np.real(lx), axis=-1) > 0) or np.any(np.real(lx) < 0):
-        raise ValueError("lx rises with age or is negative; survivors fall from age to age")
-    with np.errstate(all="ignore"):
-        qx = np.where(lx[..., :-1] == 0, 1.0, 1 - lx[..., 1:] / lx[..., :-1])
-    return from_qx(grid, np.concatenate([qx, np.ones_like(lx[..., -1:])], axis=-1), ax)
-
-
 def pull(table: LifeTable, partials: Partials) -> Gradient:
     """The gradient in mx and ax of a number whose derivatives by column are given.
 

@@ -13,6 +13,7 @@ from engine.causes.counts import CauseCounts
 from engine.chance import Chance, limits
 from engine.count_limits import Interval
 from engine.panel import Panel
+from engine.tables import LifeTable, from_rates
 from server.accounts.viewer import LOCAL
 from server.actions import masking, totals
 from server.actions.check_upload import check_upload
@@ -53,6 +54,23 @@ def gompertz_rates(
     starts = np.array(grid.starts, float)
     child = infant * np.where(starts == 0, 1.0, 0.06 * (starts < 5))
     return np.asarray(level * np.exp(slope * mids) + accidents + child)
+
+
+def table_of_qx(grid: AgeGrid, qx: Array, ax: Array) -> LifeTable:
+    """The table of given probabilities of dying; the open group's is 1, and its rate 1 / ax."""
+    qx, ax = np.broadcast_arrays(qx, ax)
+    n, q, a = grid.widths[:-1], qx[..., :-1], ax[..., :-1]
+    with np.errstate(all="ignore"):
+        mx = np.concatenate([q / (n - (n - a) * q), 1 / ax[..., -1:]], axis=-1)
+    return from_rates(grid, mx, ax)
+
+
+def survivors_table(grid: AgeGrid, lx: Array, ax: Array) -> LifeTable:
+    """The table of given survivors, of any radix; ax of the open group is the expectation of life
+    there."""
+    with np.errstate(all="ignore"):
+        qx = np.where(lx[..., :-1] == 0, 1.0, 1 - lx[..., 1:] / lx[..., :-1])
+    return table_of_qx(grid, np.append(qx, np.ones_like(lx[..., -1:]), axis=-1), ax)
 
 
 def gompertz_panel(

@@ -30,14 +30,6 @@ class Path:
         """By how much the path's contribution of an age exceeds the straight line's, [..., age]."""
         return self.by_age - self.straight.by_age
 
-    @property
-    def apart_share(self) -> Array:
-        """Half the sum of the ages' distances over the sum of the straight line's contributions,
-        without signs: the part of what is contributed that is another age's on the path. [...]"""
-        with np.errstate(all="ignore"):
-            held = np.abs(self.straight.by_age).sum(axis=-1)
-            return np.asarray(np.abs(self.apart).sum(axis=-1) / 2 / held)
-
 
 def along(indicator: Reading, years: Panel, settings: Settings) -> Path:
     """Line integral of the gradient along the straight lines from each year to the next.

@@ -13,9 +13,9 @@ from engine.indicators import find as indicator
 from engine.panel import Panel
 from engine.settings import SETTINGS, Settings, find
 from engine.stages.separation import separate
-from engine.tables import LifeTable, Partials, from_qx, from_rates
+from engine.tables import LifeTable, Partials, from_rates
 from tests.engine.stepping import complex_step, largest_error
-from tests.factories import GRIDS, gompertz_panel
+from tests.factories import GRIDS, gompertz_panel, table_of_qx
 from tests.published import denmark
 
 
@@ -36,7 +36,7 @@ def closed_single_years() -> LifeTable:
     """Half a year lived by all who die, nobody left at 110."""
     grid = AgeGrid(tuple(range(111)))
     qx = np.append(np.minimum(1e-4 * np.exp(0.09 * np.arange(109)), 0.8), [1.0, 1.0])
-    return from_qx(grid, qx, np.full(111, 0.5))
+    return table_of_qx(grid, qx, np.full(111, 0.5))
 
 
 def of_e0(table: LifeTable) -> np.ndarray:
@@ -103,7 +103,7 @@ def test_sensitivity_to_survival_is_the_complex_step(one: Indicator, settings: S
 
     def value(px: np.ndarray) -> np.ndarray:
         qx = np.append(1 - px, 1.0)
-        return one.value(replace(chain, table=from_qx(table.grid, qx, table.ax)))
+        return one.value(replace(chain, table=table_of_qx(table.grid, qx, table.ax)))
 
     expected = complex_step(value, 1 - table.qx[:-1])
     found = sensitivity.by_survival(one, chain)

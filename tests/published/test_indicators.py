@@ -16,7 +16,8 @@ from engine.indicators import INDICATORS, estimate, find
 from engine.panel import Panel
 from engine.settings import SETTINGS
 from engine.streams import poisson_draws
-from engine.tables import LifeTable, from_lx, from_rates
+from engine.tables import LifeTable, from_rates
+from tests.factories import survivors_table
 from tests.published import denmark
 
 SETTINGS_1 = SETTINGS["almanac-1"]
@@ -190,7 +191,7 @@ def gompertz_table(level: float, slope: float) -> LifeTable:
     ax = (years - lx[1:]) / (lx[:-1] - lx[1:])
     z = level / slope * np.exp(slope * ages[-1])
     last = np.exp(z) * exp1(z) / slope
-    return from_lx(AgeGrid(tuple(range(110))), lx, np.append(ax, last))
+    return survivors_table(AgeGrid(tuple(range(110))), lx, np.append(ax, last))
 
 
 @pytest.mark.parametrize("ends", [20, 60, 100])
@@ -235,7 +236,7 @@ def test_a_constant_hazard_is_half_as_unequal_as_can_be() -> None:
 def test_where_survivors_fall_on_a_line_half_of_life_is_lost(starts: tuple[int, ...]) -> None:
     exact = law_of("de Moivre (linear l(x))")
     middles = np.append(np.diff(starts) / 2, 1e-14)  # nobody reaches 100, where no life is left
-    table = from_lx(AgeGrid(starts), 1 - np.array(starts) / 100, middles)
+    table = survivors_table(AgeGrid(starts), 1 - np.array(starts) / 100, middles)
     for key in ("e0", "edagger", "H", "median"):
         assert read(key, table) == pytest.approx(exact[key], rel=1e-12)
     for key, quantile in (("lower_quartile", 25), ("upper_quartile", 75), ("iqr", 50)):
