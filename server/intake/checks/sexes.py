@@ -125,7 +125,8 @@ def _of_rates(ledger: Ledger) -> Iterator[Fault]:
             met = np.where(known, one.deaths[women], 0).sum(axis=-1)
             ratio = died / np.where(known, expected, 0).sum(axis=-1)
             ratio = np.where(np.minimum(died, met) >= FEW, ratio, np.nan)
-        together = _odd(ratio, np.sqrt(UNEVEN * (1 / died + 1 / met)), area, RATES)
+            chance = np.sqrt(UNEVEN * (1 / died + 1 / met))
+        together = _odd(ratio, chance, area, RATES)
         apart = _odd(by_age, spread, area, RATES_AT_AN_AGE)
         apart.off[together.off] = False  # said already
 
