@@ -99,8 +99,8 @@ def _charts(found: CauseFigures, source: str) -> tuple[Chart, ...]:
 
 def _tables(found: CauseFigures) -> tuple[Table, ...]:
     own = marks(found.holdings, found.of, found.loaded)
-    made = [tables.deaths(found), tables.lives(found)]
-    made += [tables.by_age(found)] if found.readable else []
+    made = [tables.deaths(found), tables.rates(found), tables.lives(found)]
+    made += [tables.by_age(found), tables.unevenness(found)] if found.readable else []
     made += [tables.premature(found), tables.targets(found)]
     course = tables.course(found)
     return (*(marked(table, own) for table in made), *([course] if course else []))
@@ -191,7 +191,11 @@ def _cautions(session: Session, found: CauseFigures) -> tuple[Caution, ...]:
         beside=[
             basis.provisional(provisional_years),
             moved_before,
-            say.unclear(found.held.of_kind, float(panel.deaths.sum())),
+            say.unclear(
+                found.held.of_kind,
+                float(panel.deaths.sum()),
+                provisional=bool(provisional_years),
+            ),
             basis.estimated(
                 [names.population(found.of.sex, found.name)] if found.loaded.estimated else []
             ),

@@ -3,7 +3,7 @@
 import numpy as np
 
 from engine.ages import AgeGrid, Array
-from server.charts.chart import Chart, Series
+from server.charts.chart import At, Chart, Series
 from server.charts.scales import ticks
 from server.pages import breaks as of_breaks
 from server.pages import cause_choices
@@ -59,7 +59,7 @@ def ranked(found: CauseFigures, source: str) -> Chart | None:
         y_ticks=rows,
         y_text=labels,
         hover="%{customdata}: %{x:,.2f}",
-        table="lives" if lost else "causes",
+        table="causes",
         series=(
             Series(
                 unit,
@@ -80,33 +80,29 @@ def by_age(found: CauseFigures, source: str) -> Chart | None:
     grid, shown = found.panel.grid, found.leading
     if not shown or not found.readable:
         return None
-    density = found.lost[:, :-1] / grid.widths[:-1]
-    lines = [_line(found, density, at, place) for place, at in enumerate(shown) if place < NAMED]
-    others = [
-        Series(
-            cause_choices.name(found.causes[at]),
-            places(grid.mids[:-1]),
-            values(density[at]),
-            role="ink-2",
-            weight="many",
-            name=cause_choices.name(found.causes[at]),
-            names=grid.labels[:-1],
-        )
-        for at in shown[NAMED:]
+    # the first year, if it is a group, would dwarf all others: it stands in the table
+    drawn = slice(1 if grid.starts[1] == 1 else 0, len(grid) - 1)
+    density = found.lost[:, drawn] / grid.widths[drawn]
+    most = 1.2 * float(np.nanmax(density[list(shown)]))
+    named = _standing_out(density, shown, least=0.05 * most)
+    others = [_line(found, density[at], at, drawn, None) for at in shown if at not in named]
+    lines = [
+        _line(found, density[at], at, drawn, place, _apart(density[named], place))
+        for place, at in enumerate(named)
     ]
-    most = 1.12 * float(np.nanmax(density[list(shown)]))
     return Chart(
         key="by-age",
         finding=_most_of(found, shown[0]),
         unit=_(
-            "Years lost per death for each year of age, by cause, {who} in {year}; the thin lines"
-            " are the other causes",
+            "Years lost per death for each year of age, by cause, {who} in {year}, without the"
+            " first year of life; the thin lines are the other causes",
             who=names.population(found.of.sex, found.name),
             year=found.period,
         )
         if others
         else _(
-            "Years lost per death for each year of age, by cause, {who} in {year}",
+            "Years lost per death for each year of age, by cause, {who} in {year}, without the"
+            " first year of life",
             who=names.population(found.of.sex, found.name),
             year=found.period,
         ),
@@ -126,19 +122,58 @@ def by_age(found: CauseFigures, source: str) -> Chart | None:
     )
 
 
-def _line(found: CauseFigures, density: Array, at: int, place: int) -> Series:
+def _line(
+    found: CauseFigures,
+    density: Array,
+    at: int,
+    drawn: slice,
+    place: int | None,
+    peak: int = 0,
+) -> Series:
+    """One cause; those that cost most in a colour of their own, named where they stand out."""
     grid, label = found.panel.grid, cause_choices.name(found.causes[at])
+    mids = grid.mids[drawn]
     return Series(
         label,
-        places(grid.mids[:-1]),
-        values(density[at]),
-        sex="f",
-        role=f"s{place + 1}",
-        weight="this" if place == 0 else "one",
-        at="end",
+        places(mids),
+        values(density),
+        role="ink-2" if place is None else f"s{place + 1}",
+        weight="many" if place is None else "this" if place == 0 else "one",
+        at=None if place is None else _beside(mids, density, peak),
         name=label,
-        names=grid.labels[:-1],
+        names=grid.labels[drawn],
     )
+
+
+def _standing_out(density: Array, shown: tuple[int, ...], *, least: float) -> list[int]:
+    """Of the causes that cost most those that somewhere lie above the others by so much: they can
+    be named on their lines."""
+    named = list(shown[:NAMED])
+    for place in reversed(range(1, len(named))):
+        if _above(density[named], place).max() < least:
+            del named[place]
+    return named
+
+
+def _above(named: Array, place: int) -> Array:
+    """How far one line lies above the highest of the others, by age."""
+    others = np.delete(named, place, axis=0)
+    return np.asarray(named[place] - (others.max(axis=0) if len(others) else 0.0))
+
+
+def _apart(named: Array, place: int) -> int:
+    """The age at which a line lies highest above the others that are named."""
+    return int(np.argmax(_above(named, place)))
+
+
+def _beside(mids: Array, density: Array, at: int) -> At:
+    """Where a name stands: over a peak, before a rise, behind a fall."""
+    x, y = float(mids[at]), float(density[at])
+    before = density[at - 1] if at else 0.0
+    after = density[at + 1] if at + 1 < len(density) else 0.0
+    if before < y >= after:
+        return At(x, y, "center", dy=12)
+    return At(x, y, "right", dx=-8, dy=4) if after > y else At(x, y, "left", dx=8, dy=4)
 
 
 def _most_of(found: CauseFigures, at: int) -> str:

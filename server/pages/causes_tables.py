@@ -19,6 +19,7 @@ UNITS: dict[str, Unit] = {one.key: one.unit for one in NUMBERS} | {
 }
 SHARE = say.PERCENT
 CAUSE = "cause"
+WHOLE: tuple[Cell, ...] = (100.0, "", "")
 
 
 def years(found: CauseFigures) -> Unit:
@@ -27,60 +28,83 @@ def years(found: CauseFigures) -> Unit:
 
 
 def deaths(found: CauseFigures) -> Table:
-    """Deaths of each cause, their share, and rates."""
+    """Deaths of each cause, their share, and the years lost per death that go with them."""
     heads = (
         Column(CAUSE, _("cause")),
         Column("deaths", _("deaths"), decimals=0, counted=True),
         *columns("share", _("share"), 1, unit="%"),
-        *columns("rate", _("death rate"), 1, unit=_("per 100,000 person-years")),
-        *columns("standardised", _("standardised rate"), 1, unit=_("E2013, per 100,000")),
+        *columns("lost", _("years lost per death"), years(found).decimals, unit=_("e-dagger")),
     )
-    rows = tuple(
+    rows = [
         _row(
             found,
             at,
             (
                 count(float(found.deaths.deaths[at])),
                 *_cells(found, found.deaths.share[at], SHARE),
-                *_of(found, "cdr", at),
-                *_of(found, "asr_esp2013", at),
+                *_of(found, "edagger", at=at),
             ),
         )
-        for at in _listed(found)
+        for at in found.order
+    ]
+    rows.append(
+        _total(count(float(found.panel.deaths.sum())), *WHOLE, *_all(found, "edagger", "edagger"))
     )
-    total = _total(
-        found.panel.deaths.sum(),
-        (100.0, "", ""),
-        _cells(found, found.all["cdr"], UNITS["cdr"]),
-        _cells(found, found.all["asr_esp2013"], UNITS["asr_esp2013"]),
+    note = _("Shares and years lost add up over causes.")
+    none = [
+        names.inside(cause_choices.name(cause))
+        for at, cause in enumerate(found.causes)
+        if found.deaths.deaths[at] == 0
+    ]
+    if none:
+        note += " " + _("No deaths: {causes}.", causes=names.listed(none))
+    return Table("causes", _title(found, _("Deaths by cause")), heads, tuple(rows), note)
+
+
+def rates(found: CauseFigures) -> Table:
+    """Death rates and years of life lost of each cause."""
+    heads = (
+        Column(CAUSE, _("cause")),
+        *columns("rate", _("death rate"), 1, unit=_("per 100,000")),
+        *columns("standardised", _("standardised"), 1, unit=_("E2013, per 100,000")),
+        *columns("years", _("years of life lost"), 0, unit=_("reference, per 100,000")),
     )
-    note = _("Of fewer than 10 deaths there is no standardised rate.")
-    return Table("causes", _title(found, _("Deaths by cause")), heads, rows, note, total=total)
+    keys = ("cdr", "asr_esp2013", "yll_ref")
+    rows = [_row(found, at, _of(found, *keys, at=at)) for at in found.order]
+    rows.append(_total(*(cell for key in keys for cell in _all(found, key, key))))
+    note = _(
+        "For every 100,000 person-years; E2013 is the European Standard Population 2013. Of fewer"
+        " than 10 deaths there is no standardised rate. Years of life lost are against the"
+        " reference life table of 2010."
+    )
+    return Table("rates", _title(found, _("Death rates by cause")), heads, tuple(rows), note)
 
 
 def lives(found: CauseFigures) -> Table:
     """What each cause means in a life table."""
-    decimals = years(found).decimals
     heads = (
         Column(CAUSE, _("cause")),
         *columns("chance", _("chance of dying of it"), 1, unit=_("per 100 births")),
         *columns("mean_age", _("mean age at death"), 1, unit=_("years")),
-        *columns("lost", _("years lost per death"), decimals, unit=_("e-dagger, adds up")),
-        *columns("unevenness", _("unevenness"), 3, unit=_("H, adds up")),
-        *columns("gain", _("gain without it"), decimals, unit=_("years, does not add up")),
+        *columns("gain", _("gain without it"), years(found).decimals, unit=_("years")),
     )
-    keys = ("chance", "mean_age", "edagger", "H", "gain")
-    rows = tuple(
-        _row(found, at, tuple(cell for key in keys for cell in _of(found, key, at)))
-        for at in _listed(found)
+    keys = ("chance", "mean_age", "gain")
+    rows = [_row(found, at, _of(found, *keys, at=at)) for at in found.order]
+    rows.append(_total(*WHOLE, *_all(found, "e0", "mean_age"), "", "", ""))
+    note = _("Gains in life expectancy without a cause do not add up.")
+    return Table("lives", _title(found, _("Life tables by cause")), heads, tuple(rows), note)
+
+
+def unevenness(found: CauseFigures) -> Table:
+    """The parts of the relative unevenness of length of life, which add up."""
+    heads = (
+        Column(CAUSE, _("cause")),
+        *columns("unevenness", _("unevenness"), 4, unit=_("H, adds up")),
     )
-    all_ = found.all
-    total = _total(
-        *((100.0, "", ""), _cells(found, all_["e0"], UNITS["mean_age"])),
-        *(_cells(found, all_[key], UNITS[key]) for key in ("edagger", "H")),
-        ("", "", ""),
-    )
-    return Table("lives", _title(found, _("Life tables by cause")), heads, rows, total=total)
+    rows = [_row(found, at, _of(found, "H", at=at)) for at in found.order]
+    rows.append(_total(*_all(found, "H", "H")))
+    title = _title(found, _("Unevenness of length of life by cause"))
+    return Table("unevenness", title, heads, tuple(rows))
 
 
 def premature(found: CauseFigures) -> Table:
@@ -88,28 +112,25 @@ def premature(found: CauseFigures) -> Table:
     heads = (
         Column(CAUSE, _("cause")),
         Column("deaths", _("deaths before 75"), decimals=0, counted=True),
-        *columns("rate", _("standardised rate before 75"), 1, unit=_("E2013, per 100,000")),
-        *columns("chance", _("chance of dying of it before 75"), 1, unit=_("per 100 births")),
-        *columns("lost", _("years of life lost before 75"), 0, unit=_("per 100,000 person-years")),
+        *columns("rate", _("standardised"), 1, unit=_("E2013, per 100,000")),
+        *columns("chance", _("chance of dying"), 1, unit=_("per 100 births")),
+        *columns("lost", _("years of life lost"), 0, unit=_("per 100,000")),
     )
     keys = ("asr75_esp2013", "chance75", "yll75")
     own = young_deaths(found)
-    rows = tuple(
-        _row(
-            found,
-            at,
-            (count(float(own[at])), *(cell for key in keys for cell in _of(found, key, at))),
+    rows = [
+        _row(found, at, (count(float(own[at])), *_of(found, *keys, at=at))) for at in found.order
+    ]
+    rows.append(
+        _total(
+            count(float(own.sum())),
+            *_all(found, "asr75_esp2013", "asr75_esp2013"),
+            *_all(found, "75q0", "chance75"),
+            *_all(found, "yll75", "yll75"),
         )
-        for at in _listed(found)
-    )
-    total = _total(
-        own.sum(),
-        _cells(found, found.all["asr75_esp2013"], UNITS["asr75_esp2013"]),
-        _cells(found, found.all["75q0"], UNITS["chance75"]),
-        _cells(found, found.all["yll75"], UNITS["yll75"]),
     )
     title = _title(found, _("Deaths before 75 by cause"))
-    return Table("premature", title, heads, rows, total=total)
+    return Table("premature", title, heads, tuple(rows), _("All before age 75, or under it."))
 
 
 def young_deaths(found: CauseFigures) -> np.ndarray[tuple[int, ...], np.dtype[np.float64]]:
@@ -121,7 +142,7 @@ def young_deaths(found: CauseFigures) -> np.ndarray[tuple[int, ...], np.dtype[np
 def by_age(found: CauseFigures) -> Table:
     """Years lost per death by cause and age, which add up."""
     labels = found.panel.grid.labels
-    places = _listed(found)
+    places = found.order
     heads = (
         Column("age", _("age")),
         *(
@@ -150,7 +171,7 @@ def targets(found: CauseFigures) -> Table:
         Column("target", _("indicator")),
         *columns("value", _("value"), 1),
         Column("unit", _("unit")),
-        Column("codes", _("codes of ICD-10")),
+        Column("codes", _("codes, ICD-10")),
         Column("source", _("source")),
     )
     rows = []
@@ -200,40 +221,37 @@ def course(found: CauseFigures) -> Table | None:
     return Table("course", title, heads, rows)
 
 
-def _listed(found: CauseFigures) -> tuple[int, ...]:
-    """Causes that somebody died of, in the order of what they cost; then the others of the list."""
-    first = found.order
-    return (*first, *(at for at in range(len(found.causes)) if at not in first))
-
-
 def _row(found: CauseFigures, at: int, cells: tuple[Cell, ...]) -> Row:
     cause = found.causes[at]
+    unclear = _("says little of what people died of")
+    waiting = found.loaded.status == "provisional"
     kinds = {
-        "ill_defined": _("says little of what people died of"),
-        "pending": _("a cause may still come"),
+        "ill_defined": unclear,
+        "pending": _("a cause may still come") if waiting else unclear,
     }
     return Row(
         (cause.code, *cells), shown=cause_choices.name(cause), second=kinds.get(cause.kind, "")
     )
 
 
-def _of(found: CauseFigures, key: str, at: int) -> tuple[Cell, ...]:
-    return _cells(found, found.estimates[key][at], UNITS[key])
+def _of(found: CauseFigures, *keys: str, at: int) -> tuple[Cell, ...]:
+    """Numbers of one cause, each with its limits."""
+    return tuple(
+        cell for key in keys for cell in _cells(found, found.estimates[key][at], UNITS[key])
+    )
+
+
+def _all(found: CauseFigures, key: str, unit: str) -> tuple[Cell, ...]:
+    """The same number of all causes, in the unit of one by cause."""
+    return _cells(found, found.all[key], UNITS[unit])
 
 
 def _cells(found: CauseFigures, one: Estimate, unit: Unit) -> tuple[Cell, ...]:
     return tuple(triple(one, unit, found.settings))
 
 
-def _total(*parts: object) -> Row:
-    """A row of all causes; a number alone is a count."""
-    cells: list[Cell] = ["all"]
-    for part in parts:
-        if isinstance(part, tuple):
-            cells += part
-        else:
-            cells.append(count(float(part)))  # type: ignore[arg-type]
-    return Row(tuple(cells), shown=_("all causes"))
+def _total(*cells: Cell) -> Row:
+    return Row(("all", *cells), shown=_("all causes"))
 
 
 def _title(found: CauseFigures, what: str) -> str:

@@ -50,26 +50,28 @@ def answer(
             who=names.population(sex, area),
             year=period,
         )
-        return start + _parts(parts, PERCENT, f"{NO_BREAK}%", of=_("of"))
+        texts = _("{amount} were of {cause}"), _("{amount} of {cause}")
+        return start + _parts(parts, PERCENT, f"{NO_BREAK}%", texts)
     start = phrase(
         _("Of the {years} years lost per death of {who} in {year}, "),
         years=shown(total, unit),
         who=names.population(sex, area),
         year=period,
     )
-    return start + _parts(parts, unit, "", of=_("with"))
+    texts = _("{amount} go with {cause}"), _("{amount} with {cause}")
+    return start + _parts(parts, unit, "", texts)
 
 
-def _parts(parts: Sequence[Part], unit: Unit, sign: str, *, of: str) -> Sentence:
+def _parts(parts: Sequence[Part], unit: Unit, sign: str, texts: tuple[str, str]) -> Sentence:
+    """The amounts of the causes in a row, the first in a text of its own."""
     said: list[Piece] = []
     for at, (name, part) in enumerate(parts):
-        text = _("{amount} go {of} {cause}") if at == 0 else _("{amount} {of} {cause}")
         joined = "" if at == 0 else _(" and ") if at == len(parts) - 1 else ", "
         amount: list[Piece] = [Piece(shown(part, unit) + sign)]
         if has_interval(part):
             amount += [Piece(" "), bracketed(limits(part, unit))]
         said.append(Piece(joined))
-        for piece in phrase(text, amount="\0", of=of, cause=names.inside(name)):
+        for piece in phrase(texts[at > 0], amount="\0", cause=names.inside(name)):
             said += amount if piece.text == "\0" else [piece]
     return tuple(piece for piece in (*said, Piece(".")) if piece.text)
 
@@ -311,14 +313,15 @@ def _named(word: str, text: str) -> Sentence:
     return phrase("{word}. {text}", word=Piece(word, emphasis="strong"), text=text)
 
 
-def unclear(of_kind: Mapping[str, float], deaths: float) -> Told:
-    """How many deaths say little of what people died of."""
+def unclear(of_kind: Mapping[str, float], deaths: float, *, provisional: bool) -> Told:
+    """How many deaths say little of what people died of; in a `provisional` year some of them will
+    still be given a cause."""
     said = {
-        "ill_defined": _("of ill-defined cause"),
-        "pending": _("of unknown cause, some of which will still be given one"),
-        "undetermined": _("of undetermined intent"),
-        "not_underlying": _("under codes that are no underlying cause"),
-        "not-stated": _("without a stated cause"),
+        "ill_defined": _("are of ill-defined cause"),
+        "pending": _("still wait for a cause") if provisional else _("are of unknown cause"),
+        "undetermined": _("are of undetermined intent"),
+        "not_underlying": _("have codes that are no underlying cause"),
+        "not-stated": _("have no stated cause"),
     }
     found = [
         _("{share} {what}", share=_share(of_kind[kind], deaths), what=text)
