@@ -198,9 +198,8 @@ def _charts(found: Exchange, source: str) -> tuple[Chart, ...]:
             at=at,
         )
 
-    height = [
-        at_age(grid, np.append(column, np.nan), age) for column, age in ((there, 60), (fewer, 30))
-    ]
+    upper = 1.7 * at_age(grid, np.append(there, np.nan), 56)
+    lower = at_age(grid, np.append(fewer, np.nan), 62) / 2.2
     chart = Chart(
         key="exchange",
         finding=say.finding(int(np.isnan(of.deaths).sum())),
@@ -220,13 +219,13 @@ def _charts(found: Exchange, source: str) -> tuple[Chart, ...]:
                 fewer,
                 _("deaths fewer for one month"),
                 "s1",
-                At(30, 0.45 * (height[1] or 1), "left", 4, narrow_x=26),
+                At(60, max(lower, 1.3 * low), "left", 0, narrow_x=44),
             ),
             line(
                 there,
                 _("deaths there were"),
                 "s2",
-                At(58, 1.6 * (height[0] or 1), "right", -4, narrow_x=56),
+                At(54, min(upper, high / 1.3), "right", 0, narrow_x=56),
             ),
         ),
     )

@@ -172,14 +172,15 @@ def chart(found: Gaps, source: str) -> Chart | None:
     is_clear = flags[shown]
     drawn = [
         series(_("clear"), values, is_clear, "s1", "reaches"),
-        series(_("not clear"), values, ~is_clear, "ink-2", "reaches"),
+        series(_("not clear"), values, ~is_clear, "ink-2/.4", "reaches"),
+        series(_("if all were alike"), alike, np.ones(len(shown), bool), "s2", "dots"),
     ]
     return Chart(
         key="gaps",
         finding=say.finding(int(flags.sum())),
         unit=_(
             "Days of life expectancy gained with the benchmark’s death rate there alone; grey: not"
-            " clear"
+            " clear; dots alone: what chance shows on average if all areas are alike"
         ),
         source=source,
         described=_("The largest gains, one row each; the numbers are in the table of gaps."),

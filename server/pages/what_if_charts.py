@@ -66,12 +66,8 @@ def rates(found: Findings, source: str) -> Chart | None:
 def _line(found: Findings, column: Array, label: str, role: str, weight: str) -> Series:
     grid = tables.groups(found.grid)
     upper = weight == "that"
-    at = at_age(grid, np.append(column, np.nan), 22 if upper else 62)
-    place = (
-        At(22, 1.9 * at, "right", 0, narrow_x=30)
-        if upper
-        else At(66, at / 1.2, "left", 10, narrow_x=58)
-    )
+    at = at_age(grid, np.append(column, np.nan), 50 if upper else 56)
+    place = At(48, 2.1 * at, "right", 0, narrow_x=52) if upper else At(60, at / 2.1, "left", 0)
     return Series(
         label,
         places(grid.mids[:-1]),

@@ -45,10 +45,12 @@ def choose(
     settings: Settings,
     least: float,
     figures: str,
+    *,
+    ages: AgeGrid,
 ) -> Chosen:
     """From pooled counts of the years around those asked, none of them itself: so what chance did
-    in the year asked has no part in the choice. Years parted by a break are left out. One
-    statement."""
+    in the year asked has no part in the choice. Years parted by a break are left out, and areas
+    counted in coarser ages than the one asked. One statement."""
     wholes = {area.parent for area in held.areas}
     leaves = tuple(sorted(area.code for area in held.areas if area.code not in wholes))
     own = span(of.period, settings.years)
@@ -61,6 +63,7 @@ def choose(
         area: found
         for area in leaves
         if (found := [year for year in years if _held(cells, held, area, of.sex, year, own)])
+        and _as_fine(cells, [Key(area, of.sex, year, "deaths") for year in found], ages)
     }
     if not known:
         return Chosen((), np.zeros(0), np.zeros(0), np.zeros(0, bool), years)
@@ -77,6 +80,10 @@ def _held(
     first, last = min(year, *own), max(year, *own)
     whole = all(Key(area, sex, year, measure) in cells for measure in MEASURES)
     return whole and not held.parted(first, last, area)
+
+
+def _as_fine(cells: Cells, keys: list[Key], ages: AgeGrid) -> bool:
+    return all(set(ages.starts) <= set(cells[key].grid.starts) for key in keys)
 
 
 def _pooled(cells: Cells, known: dict[str, list[str]], sex: str) -> Panel:

@@ -117,19 +117,25 @@ def gaps_of(session: Session, heading: Heading, question: GapsQuestion) -> Gaps:
     settings = named.find(question.settings)
     held = holdings(session, collection, number)
     held.require(question.of)
-    chosen = choose(
-        session, heading, held, question.of, settings, float(question.least), question.figures
-    )
     choice = CauseChoice.spelled(question.causes, held=heading.causes)
     beside = replace(Beside.of(settings, held.areas), causes=choice)
-    asked = [
-        question.of,
-        *(replace(question.of, area=area) for area in chosen.candidates),
-    ]
-    wanted = [one for one in dict.fromkeys(asked) if held.all_of(one, settings.years)]
+    wholes = {area.parent for area in held.areas}
+    around = [area.code for area in held.areas if area.code not in wholes]
+    asked = dict.fromkeys((question.of, *(replace(question.of, area=area) for area in around)))
+    wanted = [one for one in asked if held.all_of(one, settings.years)]
     found = load(session, collection, number, wanted, beside, figures=question.figures)
     if question.of not in found:
         raise held.lacks(question.of, settings.years)
+    chosen = choose(
+        session,
+        heading,
+        held,
+        question.of,
+        settings,
+        float(question.least),
+        question.figures,
+        ages=_groups(found[question.of].panel.grid),
+    )
     e0 = indicators.find("e0")
     members = [replace(question.of, area=area) for area in chosen.members]
     estimate = indicators.estimate(e0, found[question.of].panel, settings)

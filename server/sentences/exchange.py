@@ -2,6 +2,7 @@
 
 import math
 
+from engine.standardisation import FEW_DEATHS
 from engine.whatif_reach import Reach
 from server.sentences import names
 from server.sentences.movements import bracketed
@@ -55,11 +56,15 @@ def from_to(few: tuple[str, float], many: tuple[str, float], short: int) -> Sent
     not even all deaths do."""
     text = (
         _(
-            "Fewer deaths at one age alone: from {few} at {young} to {many} at {old}, and at"
-            " {short} age groups not even all deaths there were make a month."
+            "Fewer deaths at one age alone, of those where at least {bound} died: from {few} at"
+            " {young} to {many} at {old}. At {short} age groups not even all deaths there were make"
+            " a month."
         )
         if short
-        else _("Fewer deaths at one age alone: from {few} at {young} to {many} at {old}.")
+        else _(
+            "Fewer deaths at one age alone, of those where at least {bound} died: from {few} at"
+            " {young} to {many} at {old}."
+        )
     )
     return phrase(
         text,
@@ -68,6 +73,7 @@ def from_to(few: tuple[str, float], many: tuple[str, float], short: int) -> Sent
         many=_count(many[1]),
         old=many[0],
         short=str(short),
+        bound=str(FEW_DEATHS),
     )
 
 

@@ -138,17 +138,15 @@ def unevenness(value: float, low: float, high: float) -> Sentence:
         "interval": bracketed(interval(least, most, 1)),
     }
     if low <= 0 <= high:
-        return phrase(
-            _("What the largest of these would make of relative unevenness (H) is not clear.")
-        )
+        return phrase(_("What this would make of relative unevenness (H) is not clear."))
     text = (
         _(
-            "The largest of these would make length of life more even: H lower by {value}"
+            "With that gap closed length of life would be more even: H lower by {value}"
             " thousandths {interval}."
         )
         if value < 0
         else _(
-            "The largest of these would make length of life less even: H higher by {value}"
+            "With that gap closed length of life would be less even: H higher by {value}"
             " thousandths {interval}."
         )
     )
@@ -159,11 +157,13 @@ def benchmark(areas: Sequence[str], years_: Sequence[str], least: str, candidate
     """What the area is set against, and how that was chosen."""
     return phrase(
         _(
-            "The benchmark is {areas} together, in the same year: of {count} areas with at least"
-            " {least} person-years the quarter that lived longest in {years}, years other than this"
-            " one, so that chance in the year itself had no part in the choice."
+            "The benchmark is {areas} in the same year: of {count} areas with at least {least}"
+            " person-years and ages as fine the quarter that lived longest in {years}, years other"
+            " than this one, so that chance in the year itself had no part in the choice."
         ),
-        areas=names.listed(list(areas), most=8),
+        areas=_("{areas} together", areas=names.listed(list(areas), most=8))
+        if len(areas) > 1
+        else names.listed(list(areas)),
         count=str(candidates),
         least=whole(float(least)),
         years=_span(years_),
