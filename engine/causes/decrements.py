@@ -5,11 +5,12 @@ import numpy as np
 from engine.ages import Array
 from engine.causes.counts import CauseCounts
 from engine.causes.number import CauseNumber
-from engine.causes.parting import Parted, Slopes, part
+from engine.causes.parting import Parted, Slopes, cause_first, part
 from engine.estimates import Reason
 from engine.indicator import Needs, Unit
 from engine.panel import Panel
 from engine.settings import Settings
+from engine.standardisation import LEAST_DEATHS
 from engine.tables import Partials
 
 CHANCE = Unit("per_100_births", "per 100 births", 100, 1, limits="part")
@@ -73,9 +74,10 @@ def chance_before(age: int | None) -> CauseNumber:
 def _mean_age(parted: Parted) -> Slopes:
     table = parted.chain.table
     dx, age = parted.mx * table.Lx, np.array(table.grid.starts, float) + table.ax
-    total = dx.sum(axis=-1)
-    value = np.where(np.real(total) > 0, (dx * age).sum(axis=-1) / total, np.nan)
-    per = 1 / np.where(np.real(total) > 0, total, np.nan)[..., None]
+    total, counted = dx.sum(axis=-1), cause_first(parted.causes.counts).sum(axis=-1)
+    enough = np.real(counted) >= LEAST_DEATHS
+    value = np.where(enough, (dx * age).sum(axis=-1) / total, np.nan)
+    per = 1 / np.where(enough, total, np.nan)[..., None]
     later = (age - value[..., None]) * per
     return Slopes(value, Partials(Lx=parted.mx * later, ax=dx * per), table.Lx * later)
 
@@ -88,14 +90,15 @@ MEAN_AGE = CauseNumber(
     definition=(
         "The mean age at which those of the life table who die of the cause do so: the death rates"
         " of the year are taken, not the ages of the people there are. Within an age group deaths"
-        f" of every cause lie like those of all. {AS_COUNTED}"
+        f" of every cause lie like those of all. With fewer than {LEAST_DEATHS} deaths there is no"
+        f" mean age. {AS_COUNTED}"
     ),
     formula=(
         "sum of d_i(x) (x + a(x)) / sum of d_i(x), d_i(x) the deaths of the table of the cause,"
         " a(x) of the open group the life expectancy there"
     ),
     source=SOURCE,
-    needs=Needs(open_deaths=True, otherwise=Reason.NO_DEATHS),
+    needs=Needs(open_deaths=True, otherwise=Reason.TOO_FEW_DEATHS),
     adds_up=False,
     read=_mean_age,
 )

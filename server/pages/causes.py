@@ -16,10 +16,13 @@ from server.pages.choices import Choice as Another
 from server.pages.choices import Options, offer
 from server.pages.page import Caution, Frame, Page
 from server.pages.statuses import marked, marks
-from server.results.cause_figures import NUMBERS, CauseFigures, cause_figures
+from server.results.cause_figures import NUMBERS, CauseFigures, cause_figures, held_by_cause
+from server.results.causes import CauseChoice
+from server.results.holdings import Holdings
 from server.results.questions import (
     CausesQuestion,
     ComparisonQuestion,
+    PopulationYear,
     PopulationYearQuestion,
     address,
 )
@@ -89,6 +92,17 @@ def build(session: Session, heading: Heading, question: CausesQuestion) -> Cause
         further=_further(found),
         choice=_choice(found),
     )
+
+
+def doorway(
+    heading: Heading, held: Holdings, of: PopulationYear, figures: str, settings: str
+) -> tuple[Sentence, ...]:
+    """A link to this page from others about the same people; none where there is no such page."""
+    if not held_by_cause(heading, held, figures):
+        return ()
+    question = CausesQuestion(of, causes=CauseChoice(), figures=figures, settings=settings)
+    place = address(heading.collection.code, heading.edition.number, question)
+    return ((Piece(say.question(), place),),)
 
 
 def _charts(found: CauseFigures, source: str) -> tuple[Chart, ...]:

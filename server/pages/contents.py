@@ -6,6 +6,7 @@ from typing import ClassVar
 from server.exports.table import Table
 from server.pages import breaks, contents_tables, frames, provisional
 from server.pages.page import Frame, Notice, Page
+from server.results.cause_figures import held_by_cause
 from server.results.causes import CauseChoice
 from server.results.changes import ChangesQuestion
 from server.results.contents import Contents, ContentsQuestion, contents
@@ -206,7 +207,9 @@ def _questions(
     )
     this, that = choice.this, choice.that
     population = PopulationYearQuestion(this, *asked)
-    comparison = ComparisonQuestion(this, that, DEFAULT_INDICATOR, *asked)
+    comparison = ComparisonQuestion(
+        this, that, DEFAULT_INDICATOR, *asked, overlap="rest"
+    ).simplified()
     collection, number = heading.collection.code, heading.edition.number
     who = names.population(this.sex, held.name(this.area))
     causes = CausesQuestion(
@@ -224,7 +227,8 @@ def _questions(
         this=this.period,
         that=that.period,
     )
-    return (*first, by_cause) if held.causes else first
+    shown = held_by_cause(heading, held, question.figures)
+    return (*first, by_cause) if shown else first
 
 
 def _changes(heading: Heading, question: ContentsQuestion) -> tuple[int, str] | None:

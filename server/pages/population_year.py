@@ -15,6 +15,7 @@ from server.pages import population_year_living as living
 from server.pages import population_year_models as models
 from server.pages import population_year_rates as rates
 from server.pages import population_year_tables as tables
+from server.pages.causes import doorway
 from server.pages.choices import Choice, choice
 from server.pages.page import Caution, Frame, Page
 from server.pages.statuses import marked, marks
@@ -276,10 +277,9 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
 
     def compared(that: PopulationYear, words: str) -> None:
         if that != of and held.all_of(that, years):
-            question = ComparisonQuestion(of, that, "e0", asked.figures, asked.settings)
-            links.append(
-                Piece(words, address(heading.collection.code, heading.edition.number, question))
-            )
+            question = ComparisonQuestion(of, that, "e0", asked.figures, asked.settings, "rest")
+            where = (heading.collection.code, heading.edition.number)
+            links.append(Piece(words, address(*where, question.simplified())))
 
     if found.before:
         compared(found.before.of, _("against {year}", year=found.before.period))
@@ -314,7 +314,8 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
         curves_say.question(), address(heading.collection.code, heading.edition.number, curves)
     )
     change = ways(heading, of, asked.figures, asked.settings)
-    also = (*_why(found), *_in_full(found))
+    shown = doorway(heading, held, of, asked.figures, asked.settings)
+    also = (*shown, *_why(found), *_in_full(found))
     return (*basis.further(tuple(links), course), change, (behind,), *also)
 
 

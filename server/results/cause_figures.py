@@ -280,6 +280,11 @@ def no_causes() -> str:
     )
 
 
+def held_by_cause(heading: Heading, held: Holdings, figures: str) -> bool:
+    """Whether there is a page of causes to link to: under a policy causes are not released."""
+    return bool(held.causes) and (heading.policy is None or figures != "released")
+
+
 def _not_by_cause(heading: Heading, question: CausesQuestion) -> str:
     if heading.policy is not None and question.figures == "released":
         return _(

@@ -92,7 +92,7 @@ def test_a_cause_nobody_dies_of_has_a_chance_of_nought_with_a_limit_and_no_mean_
     found = estimates(FAMILY, panel, causes, PLAIN)
     assert found["chance"].value[1] == 0
     assert found["chance"].low[1] == 0 < found["chance"].high[1] < 1e-2
-    assert found["mean_age"].reason[1] == Reason.NO_DEATHS
+    assert found["mean_age"].reason[1] == Reason.TOO_FEW_DEATHS
 
 
 def test_an_age_that_begins_no_group_gives_none() -> None:
