@@ -37,26 +37,22 @@ def laid_over(
     """
     listed = in_tree_order(handed)
     used = {key.cause for key in new if key.cause}
-    _require_listed(used, listed or base)
+    if unknown := used - _codes((*leaves(listed), *leaves(base))):
+        raise ValueError(f"schedules of causes that no list has, or has parts of: {unknown}")
     stood, codes = _codes(base), _codes(listed)
     if listed and _codes(leaves(base)) <= _codes(leaves(listed)):
         return Laid(listed, stood - codes)
     if not base or not (listed or any(key.cause for key in gone)):
         return Laid(listed)
-    stay = {key.cause for key in held() if key.cause and key not in gone}
+    stay = used | {key.cause for key in held() if key.cause and key not in gone}
     if listed:
         _require_kept(stay, listed)
         return Laid(listed, stood - codes)
-    return Laid((), frozenset() if stay | used else stood)
+    return Laid((), frozenset() if stay else stood)
 
 
 def _codes(causes: Iterable[Cause]) -> frozenset[str]:
     return frozenset(cause.code for cause in causes)
-
-
-def _require_listed(used: set[str], causes: tuple[Cause, ...]) -> None:
-    if unknown := used - _codes(leaves(causes)):
-        raise ValueError(f"schedules of causes that the list has not, or has parts of: {unknown}")
 
 
 def _require_kept(stay: set[str], listed: tuple[Cause, ...]) -> None:

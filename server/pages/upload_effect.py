@@ -59,6 +59,7 @@ def _said(shown: Preview | None, number: int) -> tuple[Sentence, ...]:
         return (phrase(_(shown.refusal.text, **shown.refusal.values)),)
     said = (
         say.would_change(number, shown.base, asdict(shown.cells)),
+        say.by_cause(shown.by_cause),
         say.settled(shown.settled, "final"),
         say.settled(shown.unsettled, "provisional"),
     )

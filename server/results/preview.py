@@ -22,6 +22,7 @@ from server.store.records import (
 )
 
 NOTHING = Effect()
+PLAIN = ("base", "by_cause", "settled", "unsettled")  # kept as they are
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,6 +34,7 @@ class Preview:
     refusal: Refused | None = None
     schedules: Effect = NOTHING
     cells: Effect = NOTHING  # counts of one age group; under another status alone: restated
+    by_cause: int = 0  # how many of the counts added, changed or dropped are deaths by cause
     years: tuple[Yearly, ...] = ()  # those that change
     settled: tuple[str, ...] = ()  # years that become final with no number moving
     unsettled: tuple[str, ...] = ()  # and provisional
@@ -40,7 +42,7 @@ class Preview:
 
     def to_json(self) -> str:
         """As it is kept, without what is taken."""
-        stored = {name: getattr(self, name) for name in ("base", "settled", "unsettled")}
+        stored = {name: getattr(self, name) for name in PLAIN}
         stored |= {"schedules": asdict(self.schedules), "cells": asdict(self.cells)}
         stored["years"] = [(one.period, *one.deaths, *one.person_years) for one in self.years]
         stored["gives_way"] = None if self.gives_way is None else dict(self.gives_way)
@@ -58,6 +60,7 @@ class Preview:
             refusal=Refused(said[0], **said[1]) if said else None,
             schedules=Effect(**stored["schedules"]),
             cells=Effect(**stored["cells"]),
+            by_cause=stored.get("by_cause", 0),
             years=tuple(
                 Yearly(period, (died, dies), (lived, lives))
                 for period, died, dies, lived, lives in stored["years"]
@@ -89,6 +92,7 @@ def preview(
         taking=change.taking,
         schedules=_counted(altered, ages=False),
         cells=_counted(altered, ages=True),
+        by_cause=sum(one.ages for one in altered if one.key.cause and one.kind != "marks"),
         years=yearly(both[0], both[1], change.areas, base_areas),
         settled=_years(restated, "final"),
         unsettled=_years(restated, "provisional"),

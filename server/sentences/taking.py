@@ -33,6 +33,20 @@ def would_change(number: int, base: int, cells: Counts) -> Sentence:
     )
 
 
+def by_cause(count: int) -> Sentence:
+    """How many of these counts are deaths by cause; empty where none is."""
+    if not count:
+        return ()
+    return phrase(
+        n_(
+            "One of these counts is of deaths by cause.",
+            "{count} of these counts are of deaths by cause.",
+            count,
+            count=whole(count),
+        )
+    )
+
+
 def not_worked_out() -> Sentence:
     """In place of the first line, where these choices were not looked at yet."""
     return phrase(

@@ -280,5 +280,5 @@ def test_a_list_that_does_not_count_what_stays_is_refused(listed: tuple[Cause, .
 
 
 def test_counts_of_a_cause_that_is_not_listed_are_a_fault_of_the_program() -> None:
-    with pytest.raises(ValueError, match=r"has not, or has parts of: \{'body'\}"):
+    with pytest.raises(ValueError, match=r"no list has, or has parts of: \{'body'\}"):
         list_laid_over(LIST, (), new=[HEART._replace(cause="body")], gone=frozenset(), held=tuple)
