@@ -152,9 +152,13 @@ def _of_deaths(two: _Two, now: Chance, then: Chance) -> Chance:
     with np.errstate(all="ignore"):
         scaled = change.factor * parts.exposure / other.exposure
     lending = other.worth * np.where(lent, there * scaled, 0.0)
-    return _flat(
-        [own, lending, own + lending], [parts.counts - shared, other.counts - shared, shared]
+    alone = parts.counts - shared, other.counts - shared
+    # where all are counted in both, no death could be of one alone
+    single = (
+        np.where((shared > 0) & (count <= 0), 0.0, weight)
+        for weight, count in zip((own, lending), alone, strict=True)
     )
+    return _flat([*single, own + lending], [*alone, shared])
 
 
 def _flat(weights: list[Array], counts: list[Array]) -> Chance:
