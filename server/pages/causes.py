@@ -16,6 +16,7 @@ from server.pages.choices import Choice as Another
 from server.pages.choices import Options, offer
 from server.pages.page import Caution, Frame, Page
 from server.pages.statuses import marked, marks
+from server.pages.withholding import caution, charts_given, tables_given
 from server.results.cause_figures import NUMBERS, CauseFigures, cause_figures, held_by_cause
 from server.results.causes import CauseChoice
 from server.results.holdings import Holdings
@@ -98,7 +99,7 @@ def doorway(
     heading: Heading, held: Holdings, of: PopulationYear, figures: str, settings: str
 ) -> tuple[Sentence, ...]:
     """A link to this page from others about the same people; none where there is no such page."""
-    if not held_by_cause(heading, held, figures):
+    if not held_by_cause(heading, held, of, figures):
         return ()
     question = CausesQuestion(of, causes=CauseChoice(), figures=figures, settings=settings)
     place = address(heading.collection.code, heading.edition.number, question)
@@ -108,7 +109,7 @@ def doorway(
 def _charts(found: CauseFigures, source: str) -> tuple[Chart, ...]:
     made = (charts.ranked, charts.by_age, charts.course)
     drawn = (draw(found, source) for draw in made)
-    return tuple(chart for chart in drawn if chart is not None)
+    return charts_given((chart for chart in drawn if chart is not None), found.loaded)
 
 
 def _tables(found: CauseFigures) -> tuple[Table, ...]:
@@ -117,7 +118,8 @@ def _tables(found: CauseFigures) -> tuple[Table, ...]:
     made += [tables.by_age(found), tables.unevenness(found)] if found.readable else []
     made += [tables.premature(found), tables.targets(found)]
     course = tables.course(found)
-    return (*(marked(table, own) for table in made), *([course] if course else []))
+    shown = tables_given((*made, *([course] if course else [])), found.loaded)
+    return tuple(table if table.key == "course" else marked(table, own) for table in shown)
 
 
 def _answer(found: CauseFigures) -> Sentence:
@@ -203,6 +205,7 @@ def _cautions(session: Session, found: CauseFigures) -> tuple[Caution, ...]:
     )
     return frames.cautions(
         beside=[
+            caution(found.loaded),
             basis.provisional(provisional_years),
             moved_before,
             say.unclear(

@@ -31,7 +31,7 @@ def deaths(found: CauseFigures) -> Table:
     """Deaths of each cause, their share, and the years lost per death that go with them."""
     heads = (
         Column(CAUSE, _("cause")),
-        Column("deaths", _("deaths"), decimals=0, counted=True),
+        Column("deaths", _("deaths"), decimals=0, counted=not found.loaded.protected),
         *columns("share", _("share"), 1, unit="%"),
         *columns("lost", _("years lost per death"), years(found).decimals, unit=_("e-dagger")),
     )
@@ -111,7 +111,7 @@ def premature(found: CauseFigures) -> Table:
     """Deaths before 75."""
     heads = (
         Column(CAUSE, _("cause")),
-        Column("deaths", _("deaths before 75"), decimals=0, counted=True),
+        Column("deaths", _("deaths before 75"), decimals=0, counted=not found.loaded.protected),
         *columns("rate", _("standardised"), 1, unit=_("E2013, per 100,000")),
         *columns("chance", _("chance of dying"), 1, unit=_("per 100 births")),
         *columns("lost", _("years of life lost"), 0, unit=_("per 100,000")),
@@ -202,7 +202,7 @@ def course(found: CauseFigures) -> Table | None:
         return None
     heads = (
         Column("year", _("year")),
-        Column("deaths", _("deaths"), decimals=0, counted=True),
+        Column("deaths", _("deaths"), decimals=0, counted=not found.loaded.protected),
         *columns("rate", _("standardised rate"), 1, unit=_("E2013, per 100,000")),
     )
     rows = tuple(

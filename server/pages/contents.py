@@ -227,7 +227,7 @@ def _questions(
         this=this.period,
         that=that.period,
     )
-    shown = held_by_cause(heading, held, question.figures)
+    shown = held_by_cause(heading, held, this, question.figures)
     return (*first, by_cause) if shown else first
 
 

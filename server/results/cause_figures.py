@@ -280,16 +280,22 @@ def no_causes() -> str:
     )
 
 
-def held_by_cause(heading: Heading, held: Holdings, figures: str) -> bool:
-    """Whether there is a page of causes to link to: under a policy causes are not released."""
-    return bool(held.causes) and (heading.policy is None or figures != "released")
+def held_by_cause(heading: Heading, held: Holdings, of: PopulationYear, figures: str) -> bool:
+    """Whether there is a page of causes to link to. Under a policy causes are released of areas
+    that are part of none, if at all."""
+    if not held.causes or heading.policy is None or figures != "released":
+        return bool(held.causes)
+    part = any(area.parent for area in held.areas if area.code == of.area)
+    return heading.policy.terms.causes == "whole" and not part
 
 
 def _not_by_cause(heading: Heading, question: CausesQuestion) -> str:
     if heading.policy is not None and question.figures == "released":
         return _(
-            "Under the policy of this collection deaths by cause are not released. The office sees"
-            " them with figures=full."
+            "Under the policy of this collection deaths by cause of {code} are not released: they are"
+            " of areas that are part of no other, or of none. The office sees them with"
+            " figures=full.",
+            code=question.of.code,
         )
     return _(
         "This edition holds no deaths by cause of {code} for all the years asked for. Choose"
