@@ -285,15 +285,14 @@ def held_by_cause(heading: Heading, held: Holdings, of: PopulationYear, figures:
     that are part of none, if at all."""
     if not held.causes or heading.policy is None or figures != "released":
         return bool(held.causes)
-    part = any(area.parent for area in held.areas if area.code == of.area)
-    return heading.policy.terms.causes == "whole" and not part
+    return not any(area.parent for area in held.areas if area.code == of.area)
 
 
 def _not_by_cause(heading: Heading, question: CausesQuestion) -> str:
     if heading.policy is not None and question.figures == "released":
         return _(
-            "Under the policy of this collection deaths by cause of {code} are not released: they are"
-            " of areas that are part of no other, or of none. The office sees them with"
+            "Under the policy of this collection deaths by cause of {code} are not released: they"
+            " are of areas that are part of no other, or of none. The office sees them with"
             " figures=full.",
             code=question.of.code,
         )
