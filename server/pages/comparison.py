@@ -46,7 +46,8 @@ class ComparisonPage(Page):
     not_parted: tuple[Sentence, ...]  # what has no picture of contributions, and why
     even: Sentence  # what early and late deaths add; empty where it is not known
     kinds: Sentence  # of change, from fitted laws; empty where none fits
-    ratios: tuple[Sentence, ...]  # how differences of ratios come about
+    ratios: tuple[Sentence, ...]  # how a difference in unevenness comes about
+    crude: Sentence  # how one in crude death rates does
     further: tuple[Sentence, ...]
     computed: tuple[Sentence, ...]
     basis: tuple[Sentence, ...]
@@ -73,6 +74,7 @@ def build(session: Session, heading: Heading, question: ComparisonQuestion) -> C
         kinds=() if found.same else kinds.told(found.explained.kinds),
         even=even.sentence(found),
         ratios=_ratios(found),
+        crude=() if found.same or found.question.of == "cdr" else _crude(found),
         further=further(found),
         computed=_computed(found),
         basis=frames.basis(heading.edition.basis),
@@ -177,8 +179,6 @@ def _ratios(found: Comparison) -> tuple[Sentence, ...]:
         return ()
     if of.unevenness is not None:
         parts.append(kinds.unevenness(of.unevenness.first, of.unevenness.second))
-    if found.question.of != "cdr":
-        parts.append(_crude(found))
     return tuple(part for part in parts if part)
 
 

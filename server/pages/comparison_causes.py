@@ -20,7 +20,7 @@ from server.sentences.pieces import Sentence
 from server.sentences.text import _
 
 ROWS = 12  # causes drawn; smaller ones are one row together
-SIDE = 16.0  # of the largest square, px
+SIDE = 20.0  # of the largest square, px
 LEAST = 1.5  # of the smallest that is drawn
 
 
@@ -45,17 +45,20 @@ def carriers(found: Comparison, of: CauseParts) -> list[say.Carrier]:
             _(of.list[at].label or of.list[at].code),
             one.scale * float(of.by_cause[at]),
             _clear(float(of.cause_low[at]), float(of.cause_high[at]), exact=exact),
-            _ages(found, of, at),
+            ages,
+            one.scale * held,
         )
         for at in _order(of)
+        for ages, held in [_ages(found, of, at)]
     ]
 
 
-def _ages(found: Comparison, of: CauseParts, at: int) -> str:
-    """The shortest run of ages with at least half of what a cause adds; empty where other ages work
-    so much against it that the run holds more than all."""
+def _ages(found: Comparison, of: CauseParts, at: int) -> tuple[str, float]:
+    """The shortest run of ages with at least half of what a cause adds, and what it holds; empty
+    where other ages work so much against it that the run holds more than all."""
     run, held = shortest_run(found.groups, of.by_group[at])
-    return run if abs(held) <= abs(float(of.by_cause[at])) * (1 + 1e-9) else ""
+    told = abs(held) <= abs(float(of.by_cause[at])) * (1 + 1e-9)
+    return (run, held) if told else ("", 0.0)
 
 
 def sentence(found: Comparison) -> Sentence:
@@ -181,7 +184,7 @@ def _cells(found: Comparison, of: CauseParts, source: str) -> Chart:
             "Squares by age and cause of death, as large as what each adds; the numbers are in the"
             " table below."
         ),
-        size="rows" if len(labels) > 7 else "tall",
+        size="rows" if len(labels) > 5 else "tall",
         x_kind="age",
         x_range=axis(found),
         y_title="",

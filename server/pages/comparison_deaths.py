@@ -158,7 +158,7 @@ def ratios(found: Comparison, source: str) -> Chart | None:
         finding=say.ratios(tellings(found), both),
         unit=_(
             "Death rate of {this} over that of {that}, by age group, with a {level} % band; at 1"
-            " the two are equal, and each step of the scale is as many times",
+            " the two are equal",
             this=both.this.whole,
             that=both.that.whole,
             level=round(100 * found.settings.level),

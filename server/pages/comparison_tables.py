@@ -34,10 +34,17 @@ def named(found: Comparison, side: Side) -> say.Named:
     if place.rest:
         area = _("the rest of {area}", area=area)
     if found.kind == "elsewhere":
-        area = _("{area} ({collection})", area=area, collection=place.heading.collection.name)
+        area = _("{area} ({collection})", area=area, collection=_collection(found, side))
     edition = place.heading.edition.number if found.kind == "revision" else 0
     years = names.years(span(place.of.period, found.settings.years))
     return say.Named(place.of.sex, area, years, edition)
+
+
+def _collection(found: Comparison, side: Side) -> str:
+    """The name of a side's collection, with its code where the other one has the same name."""
+    ours, theirs = (one.place.heading.collection for one in (found.this, found.that))
+    own = side.place.heading.collection
+    return f"{own.name}, {own.code}" if ours.name == theirs.name else own.name
 
 
 def plain_name(found: Comparison, of: PopulationYear) -> str:

@@ -227,5 +227,6 @@ def _further(found: Curves) -> tuple[Sentence, ...]:
     compared = None
     if whole in held.status:
         words = _("Compare it with {area}, of which it is part", area=held.name(found.parent))
-        compared = link(words, ComparisonQuestion(of, whole, DEFAULT_INDICATOR, *rest))
+        asked = ComparisonQuestion(of, whole, DEFAULT_INDICATOR, *rest, overlap="rest")
+        compared = link(words, asked.simplified())
     return say.further(life, others, compared)

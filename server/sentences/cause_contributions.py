@@ -3,7 +3,6 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from engine.indicators import Indicator
 from server.sentences import names
 from server.sentences.comparison import Answer
 from server.sentences.numbers import number
@@ -15,46 +14,48 @@ MOST = 3  # causes named
 
 @dataclass(frozen=True, slots=True)
 class Carrier:
-    """A cause, or the causes not named, as printed."""
+    """A cause, in the printed unit."""
 
     label: str
     value: float
     clear: bool  # its interval leaves out 0, or there is none to heed
     ages: str = ""  # the fewest ages that hold at least half of it
+    held: float = 0.0  # what they hold
 
 
 def carried(of: Answer, causes: Sequence[Carrier], rest: float, decimals: int) -> Sentence:
-    """“Of the 1.83 years 0.91 are ... (most of it at 30 to 59)”: the causes of a clear difference
-    that work its way and are clear themselves, and what all others make."""
+    """“Of the 2.01 years 1.42 are external causes, 0.98 of it at 25 to 44”: the causes of a clear
+    difference that work its way and are clear themselves, and what all others make. Amounts are
+    told in the direction of the difference, and to the decimals of the table."""
     if not of.clear or not causes:
         return ()
     unit = of.indicator.unit
+    whole = unit.scale * float(of.difference.value)
+    way = -1.0 if whole < 0 else 1.0
+
+    def amount(value: float) -> str:
+        return number(way * value, decimals)
+
     parts = [
-        _("{part} {cause} (most of it at {ages})", part=_amount(one.value, decimals), **_said(one))
+        _(
+            "{part} {cause} ({held} of it at {ages})",
+            part=amount(one.value),
+            cause=names.inside(one.label),
+            held=amount(one.held),
+            ages=one.ages,
+        )
         if one.ages
-        else _("{part} {cause}", part=_amount(one.value, decimals), **_said(one))
+        else _("{part} {cause}", part=amount(one.value), cause=names.inside(one.label))
         for one in causes
     ]
-    whole = unit.scale * float(of.difference.value)
     return phrase(
-        _("Of the {whole} {parts}; all other causes together make {rest}."),
-        whole=_whole(of.indicator, whole, decimals),
+        _("By cause, of the {whole}: {parts}; all other causes together {rest}."),
+        whole=amount(whole)
+        if unit.label == "ratio"
+        else f"{amount(whole)}\N{NO-BREAK SPACE}{_(unit.label)}",
         parts=names.listed(parts),
-        rest=number(rest, decimals, signed=True),
+        rest=amount(rest),
     )
-
-
-def _said(one: Carrier) -> dict[str, str]:
-    return {"cause": names.inside(one.label), "ages": one.ages}
-
-
-def _amount(value: float, decimals: int) -> str:
-    return number(value, decimals, signed=True)
-
-
-def _whole(one: Indicator, value: float, decimals: int) -> str:
-    text = number(value, decimals, signed=True)
-    return text if one.unit.label == "ratio" else f"{text}\N{NO-BREAK SPACE}{_(one.unit.label)}"
 
 
 def ranked(of: Answer, largest: Carrier | None) -> str:
@@ -63,8 +64,8 @@ def ranked(of: Answer, largest: Carrier | None) -> str:
     if largest is None:
         return _("What each cause of death adds to the difference in {label}", label=label)
     return _(
-        "{cause} adds most to the difference in {label}",
-        cause=names.first_capital(largest.label),
+        "The largest part of the difference in {label}: {cause}",
+        cause=names.inside(largest.label),
         label=label,
     )
 

@@ -1,5 +1,6 @@
 """/c/{collection}/{edition}/comparison and its twins, as a reader meets them."""
 
+import re
 from dataclasses import replace
 
 import numpy as np
@@ -62,4 +63,5 @@ def test_what_can_be_shown_without_life_expectancy_is_shown(
     assert "Table of contributions by age" in answer.text
     bare = reader.get(f"/c/isle/2/comparison{asked('e0', **sides)}")
     assert bare.status_code == 200
-    assert "data-chart" not in bare.text
+    drawn = re.findall('data-chart="([a-z-]+)"', bare.text)
+    assert drawn == ["deaths", "ratios", "rise"]  # what needs no life expectancy
