@@ -45,11 +45,21 @@ class Part:
     grid: AgeGrid
     values: Array  # [variant, cause, age]; those of no stated cause last
     kinds: Array  # [kind], as delivered
+    withheld: Bools  # [cause, age], where some only stand in
+
+    def on(self, grid: AgeGrid) -> "Part":
+        """Summed into coarser age groups."""
+        if grid == self.grid:
+            return self
+        at = [self.grid.position(start) for start in grid.starts]
+        hidden = np.logical_or.reduceat(self.withheld, at, axis=-1)
+        return Part(grid, self.grid.regroup(self.values, grid), self.kinds, hidden)
 
     def plus(self, other: "Part") -> "Part":
         grid = self.grid.common(other.grid)
-        mine, theirs = (one.grid.regroup(one.values, grid) for one in (self, other))
-        return Part(grid, mine + theirs, self.kinds + other.kinds)
+        one, two = self.on(grid), other.on(grid)
+        hidden = one.withheld | two.withheld
+        return Part(grid, one.values + two.values, one.kinds + two.kinds, hidden)
 
 
 def by_cause(
@@ -97,7 +107,7 @@ def _summed(cells: Cells, parts: Mapping[Place, Part], pool: Pool) -> Part | Non
         held = all(Key(pool.area, "p", period, "deaths") in cells for period in pool.periods)
         return None if held else both
     grid = own.grid.common(both.grid)
-    mine, theirs = (one.grid.regroup(one.values[DELIVERED], grid) for one in (own, both))
+    mine, theirs = (one.on(grid).values[DELIVERED] for one in (own, both))
     return both if np.allclose(mine, theirs, rtol=1e-9, atol=1e-3, equal_nan=True) else own
 
 
@@ -126,8 +136,10 @@ class Treatment:
         found: dict[Place, Part] = {}
         for grid, several in alike.items():
             values, kinds = self._values(cells, keys, several, grid)
+            hidden = self._withheld(cells, keys, several, grid)
             found |= {
-                place: Part(grid, values[:, at], kinds[at]) for at, place in enumerate(several)
+                place: Part(grid, values[:, at], kinds[at], hidden[at])
+                for at, place in enumerate(several)
             }
         return found
 
@@ -145,7 +157,21 @@ class Treatment:
         ]
         ageless = np.nansum(deaths, axis=-1)
         kinds = [np.where(self.kind == kind, ageless, 0.0).sum(axis=-1) for kind in self.kinds]
-        return self._rolled_up(np.stack([deaths, counted, *chosen])), np.stack(kinds, axis=-1)
+        values = self._rolled_up(np.stack([deaths, counted, *chosen]), np.add)
+        return values, np.stack(kinds, axis=-1)
+
+    def _withheld(
+        self, cells: Cells, keys: Mapping[Place, list[Key]], places: list[Place], grid: AgeGrid
+    ) -> Bools:
+        """[place, cause, age]; what is left over of an age, where a cause of it is withheld."""
+        found = np.zeros((len(places), len(self.leaves) + 1, len(grid)), bool)
+        for at, place in enumerate(places):
+            for key in keys[place]:
+                if cells[key].withheld and key.cause in self.row:
+                    ages = np.searchsorted(grid.starts, cells[key].withheld, side="right") - 1
+                    found[at, self.row[key.cause], ages] = True
+        found[:, -1] = found.any(axis=1)
+        return np.asarray(self._rolled_up(found, np.logical_or), np.bool_)
 
     def _delivered(
         self,
@@ -193,19 +219,20 @@ class Treatment:
             found = np.where(here, np.nan_to_num(found, nan=1.0) * ratio, found)
         return found
 
-    def _rolled_up(self, values: Array) -> Array:
+    def _rolled_up(self, values: Array, joined: np.ufunc) -> Array:
         """The rows that are shown, of those of the list's causes without parts."""
         if self.choice.level == CAUSES:
             return values
         tops = [self.top[leaf.code] for leaf in self.leaves]
         starts = [tops.index(row.code) for row in self.rows]  # the list keeps parts together
-        return np.add.reduceat(values, [*starts, len(tops)], axis=-2)
+        return joined.reduceat(values, [*starts, len(tops)], axis=-2)
 
     def finished(self, part: Part, panel: Panel, *, unstated: bool) -> tuple[AgeGrid, Causes]:
         """On the ages it shares with the panel, whose deaths they add up to to the last digits."""
         grid = panel.grid.common(part.grid)
-        values = part.grid.regroup(part.values, grid)
-        values = values if unstated else values[:, :-1]
+        part = part.on(grid)
+        rows = (*self.rows, NOT_STATED) if unstated else self.rows
+        values, hidden = part.values[:, : len(rows)], part.withheld[: len(rows)]
         total = panel.grid.regroup(panel.deaths, grid)
         delivered, counted, chosen, *higher = values
         plain = not self.ratios and SPREAD not in (
@@ -215,11 +242,12 @@ class Treatment:
         as_delivered = plain and np.array_equal(delivered, counted, equal_nan=True)
         deaths = _fitted(chosen, total)
         causes = Causes(
-            (*self.rows, NOT_STATED) if unstated else self.rows,
+            rows,
             CauseCounts(deaths, None if as_delivered else counted),
             self.ratios,
             np.stack([one - chosen for one in higher]) if higher else None,
             dict(zip(self.kinds, part.kinds.tolist(), strict=True)),
+            hidden if hidden.any() else None,
         )
         return grid, causes
 

@@ -5,6 +5,7 @@ from dataclasses import dataclass, field
 from typing import ClassVar, Self
 
 import numpy as np
+from numpy.typing import NDArray
 
 from engine.ages import Array
 from engine.causes.counts import CauseCounts
@@ -60,6 +61,7 @@ class Causes:
     ratios: tuple[Break, ...] = ()  # those applied
     shifts: Array | None = None  # [ratio, cause, age]
     of_kind: Mapping[str, float] = field(default_factory=dict)  # deaths as delivered, by kind
+    withheld: NDArray[np.bool_] | None = None  # [cause, age], where some only stand in; None: none
 
     @classmethod
     def stack(cls, several: Sequence[Self]) -> CauseCounts:

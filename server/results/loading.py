@@ -191,6 +191,7 @@ def _with_causes(
                 own,
                 panel=own.panel.regroup(grid),
                 withheld=frozenset(hidden.tolist()),
+                protected=own.protected or known.withheld is not None,
                 causes=known,
             )
     return made

@@ -283,6 +283,26 @@ def test_deaths_as_counted_are_those_of_the_cause() -> None:
     assert_allclose(found.causes.counts.deaths[0], own["heart"])
 
 
+def test_what_stands_in_for_a_withheld_cause_is_marked_in_every_sum() -> None:
+    held = cells("a.f.2001", counts(1)) | cells("a.f.2002", counts(2), grid=COARSE)
+    key = Key("a", "f", "2001", "deaths", "lungs")
+    held[key] = replace(held[key], withheld=(1,))
+    alone = of(held, "a.f.2001", CauseChoice("causes"))
+    assert alone.causes is not None
+    assert alone.causes.withheld is not None
+    assert np.argwhere(alone.causes.withheld).tolist() == [[1, 1]]
+    pooled = of(held, "a.f.2002", years=2)
+    assert pooled.causes is not None
+    assert pooled.causes.withheld is not None
+    assert np.argwhere(pooled.causes.withheld).tolist() == [[0, 0]]
+    assert alone.protected
+    assert pooled.protected
+    free = of(held, "a.f.2002")
+    assert free.causes is not None
+    assert free.causes.withheld is None
+    assert not free.protected
+
+
 # ---- from the store -----------------------------------------------------------------------------
 
 
