@@ -20,10 +20,6 @@ SOURCE = (
     "Chiang (1968), Introduction to Stochastic Processes in Biostatistics, chapter 11; Preston,"
     " Heuveline & Guillot (2001), Demography, chapter 4"
 )
-AS_COUNTED = (
-    "Where the rates of the table are not those counted (smoothed ones, a law of old ages), its"
-    " deaths at an age are parted as those counted there."
-)
 
 
 def deaths_in_table(panel: Panel, causes: CauseCounts, settings: Settings) -> Array:
@@ -61,7 +57,7 @@ def chance_before(age: int | None) -> CauseNumber:
         unit=CHANCE,
         definition=(
             f"How many of a hundred children born would die of the cause{span} if the death rates"
-            f" of the year, of this and of all other causes, held for all their lives. {AS_COUNTED}"
+            f" of the year, of this and of all other causes, held for all their lives."
         ),
         formula=f"sum of d(x) m_i(x) / m(x) over all ages{span}, births taken as 100",
         source=SOURCE,
@@ -91,7 +87,7 @@ MEAN_AGE = CauseNumber(
         "The mean age at which those of the life table who die of the cause do so: the death rates"
         " of the year are taken, not the ages of the people there are. Within an age group deaths"
         f" of every cause lie like those of all. With fewer than {LEAST_DEATHS} deaths there is no"
-        f" mean age. {AS_COUNTED}"
+        f" mean age."
     ),
     formula=(
         "sum of d_i(x) (x + a(x)) / sum of d_i(x), d_i(x) the deaths of the table of the cause,"

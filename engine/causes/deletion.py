@@ -5,7 +5,6 @@ from dataclasses import dataclass
 import numpy as np
 
 from engine.ages import Array
-from engine.causes.decrements import AS_COUNTED
 from engine.causes.number import CauseNumber
 from engine.causes.parting import Parted, Slopes
 from engine.causes.remaining import LAWS, Left, Lived, lived
@@ -75,7 +74,7 @@ def gain(*, part: float = 1.0, law: str = "constant_ratio") -> CauseNumber:
             " and the death rates of all other causes stayed as they are. Those saved go on to die"
             " of the others at their rates, as if the causes had nothing to do with one another."
             " Gains do not add up: taken together they would be more or less than the sum. It is"
-            f" arithmetic, no forecast of what can be done. {ASSUMES[law]} {AS_COUNTED}"
+            f" arithmetic, no forecast of what can be done. {ASSUMES[law]}"
         ),
         formula=f"e(0) of the table with {FORMULAS[law]}, R the share of deaths left, less e(0)",
         source=SOURCES[law],

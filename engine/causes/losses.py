@@ -4,7 +4,6 @@ import numpy as np
 
 from engine.ages import Array
 from engine.causes.counts import CauseCounts
-from engine.causes.decrements import AS_COUNTED
 from engine.causes.number import CauseNumber
 from engine.causes.parting import Parted, Slopes, part
 from engine.indicator import Needs
@@ -69,7 +68,7 @@ EDAGGER = CauseNumber(
         " cause: how many of a life table's deaths it has, times the years that those who die"
         " of it would have had on average at their ages. Causes and ages add up to e-dagger. A"
         " hundredth of it is what life expectancy would gain if the death rates of the cause were"
-        f" 1 % lower at every age. {AS_COUNTED}"
+        " 1 % lower at every age."
     ),
     formula=(
         "sum over closed groups of d_i(x) [e(x+n) + (1 - a(x)/n) (e(x) - e(x+n))] + d_i(w) e(w),"
@@ -87,7 +86,7 @@ UNEVENNESS = CauseNumber(
     unit=RATIO,
     definition=(
         "The part of the relative unevenness of length of life (H) that goes with deaths of the"
-        f" cause: its years lost per death on average, over life expectancy at birth. {AS_COUNTED}"
+        " cause: its years lost per death on average, over life expectancy at birth."
     ),
     formula="e† of the cause / e(0)",
     source=SOURCE,

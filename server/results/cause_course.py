@@ -4,9 +4,10 @@ from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
+from scipy.special import ndtri
 
 from engine import indicators
-from engine.ages import AgeGrid
+from engine.ages import AgeGrid, Array
 from engine.causes.counts import CauseCounts
 from engine.causes.rates import rates_by_cause
 from engine.estimates import Estimate
@@ -65,12 +66,16 @@ def course(
     if len(known) < 2:
         return None
     own = [_alone(loaded, causes, places) for _period, loaded, causes, places in known]
+    estimate, level = _rates(own, settings), settings.level
+    for ratio in range(max(len(causes.ratios) for _p, _l, causes, _places in known)):
+        beside = [_alone(loaded, causes, places, ratio) for _p, loaded, causes, places in known]
+        estimate = wider(estimate, _rates(beside, settings).value - estimate.value, level)
     breaks = _breaks(held, of, cause)
     applied = {one for _p, _l, causes, _places in known for one in causes.ratios}
     return Course(
         cause,
         tuple(item[0] for item in known),
-        _rates(own, settings),
+        estimate,
         tuple(float(panel.deaths.sum()) for panel in own),
         tuple(loaded.status for _period, loaded, _causes, _places in known),
         tuple(one for one in breaks if one.kind != "shock" and one not in applied),
@@ -85,9 +90,14 @@ def _places(causes: Causes, cause: Cause, top: Mapping[str, str]) -> list[int]:
     ]
 
 
-def _alone(loaded: Loaded, causes: Causes, places: list[int]) -> Panel:
-    """The people, and the deaths of this cause."""
-    own = causes.counts.over(lambda array: array[places].sum(axis=0))
+def _alone(loaded: Loaded, causes: Causes, places: list[int], higher: int | None = None) -> Panel:
+    """The people, and the deaths of this cause; or as one of the ratios, a standard error higher,
+    would have them."""
+    counts = causes.counts
+    if higher is not None and causes.shifts is not None:
+        moved = np.maximum(counts.deaths + causes.shifts[higher], 0.0)
+        counts = replace(counts, deaths=moved)
+    own = counts.over(lambda array: array[places].sum(axis=0))
     return replace(loaded.panel, deaths=own.deaths, counted=own.counted, whole=None, standard=None)
 
 
@@ -117,6 +127,18 @@ def _breaks(held: Holdings, of: PopulationYear, cause: Cause) -> tuple[Break, ..
         one
         for one in held.breaks
         if one.area in ("", of.area) and (not one.cause or one.cause in family)
+    )
+
+
+def wider(one: Estimate, error: Array, level: float) -> Estimate:
+    """With one more standard error, independent of chance in deaths."""
+    out = np.nan_to_num(error)
+    far = float(ndtri((1 + level) / 2)) * out
+    return replace(
+        one,
+        low=one.value - np.hypot(one.value - one.low, far),
+        high=one.value + np.hypot(one.high - one.value, far),
+        se=np.hypot(one.se, out),
     )
 
 

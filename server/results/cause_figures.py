@@ -4,7 +4,6 @@ from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
-from scipy.special import ndtri
 
 from engine import indicators
 from engine import settings as named
@@ -17,7 +16,7 @@ from engine.estimates import Estimate
 from engine.indicator import Indicator
 from engine.panel import Panel
 from engine.settings import Settings, span
-from server.results.cause_course import Course, course
+from server.results.cause_course import Course, course, wider
 from server.results.causes import APPLIED, CAUSES, NOT_STATED, CauseChoice, Causes, Listed
 from server.results.holdings import Holdings, NotInEdition, holdings
 from server.results.loading import Beside, Found, Loaded, assembled, needed
@@ -205,22 +204,10 @@ def _estimates(panel: Panel, own: Causes, settings: Settings) -> dict[str, Estim
     for shift in own.shifts if own.shifts is not None else ():
         higher = read(replace(own.counts, deaths=np.maximum(own.counts.deaths + shift, 0.0)))
         found = {
-            key: _wider(one, higher[key].value - one.value, settings.level)
+            key: wider(one, higher[key].value - one.value, settings.level)
             for key, one in found.items()
         }
     return found
-
-
-def _wider(one: Estimate, error: Array, level: float) -> Estimate:
-    """With one more standard error, independent of chance in deaths."""
-    out = np.nan_to_num(error)
-    far = float(ndtri((1 + level) / 2)) * out
-    return replace(
-        one,
-        low=one.value - np.hypot(one.value - one.low, far),
-        high=one.value + np.hypot(one.high - one.value, far),
-        se=np.hypot(one.se, out),
-    )
 
 
 def _avoidable(

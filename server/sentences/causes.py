@@ -284,6 +284,7 @@ def computed(
     chosen = [said[pair] for pair in choice if pair in said]
     return (
         _named(_("Causes"), " ".join(chosen)),
+        _named(_("Parted deaths"), parted()),
         *(
             _named(
                 _("Ratio"),
@@ -296,6 +297,16 @@ def computed(
             )
             for cause, year, ratio in ratios
         ),
+    )
+
+
+def parted() -> str:
+    """How the deaths of a life table are shared among causes."""
+    return _(
+        "At each age the deaths of the life table have the causes of the deaths counted there."
+        " Where its rates are others than those counted (smoothed ones, a law of old ages, a"
+        " borrowed rate), their causes still are; above the open age, those of the open group;"
+        " where nobody died, those of all deaths together."
     )
 
 
