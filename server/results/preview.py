@@ -79,6 +79,7 @@ def preview(
     altered = [
         one
         for key in sorted(base.keys() | after.keys())
+        if base.get(key) is not after.get(key)  # what stays is the very same
         if (one := Altered(key, base.get(key), after.get(key))) and _differs(one)
     ]
     touched = {one.key.period for one in altered}
