@@ -229,6 +229,8 @@ def basis(found: Changes) -> Table:
     worded = {"people": basis_people, "dated_by": basis_dated, "population": basis_population}
 
     def said(part: str, text: str) -> str:
+        if part == "vintage" and not text:
+            return _("not named")
         return worded[part](text) if part in worded else text
 
     return Table(

@@ -33,6 +33,11 @@ class Printed:
     under_gap: Gap | None = None
     provisional: bool = False
 
+    @property
+    def empty(self) -> bool:
+        """Whether there is nothing to be read in it."""
+        return not (self.text or self.gap or self.under or self.under_gap)
+
 
 @dataclass(frozen=True, slots=True)
 class PrintedRow:

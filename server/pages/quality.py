@@ -7,6 +7,7 @@ from typing import ClassVar
 from server.intake.checks import KINDS
 from server.intake.report import Report
 from server.pages import frames, quality_tables
+from server.pages.contents_tables import Listing
 from server.pages.page import Frame, Page
 from server.results.quality import Quality, QualityQuestion, quality
 from server.sentences import quality as say
@@ -43,6 +44,7 @@ class QualityPage(Page):
 
     template: ClassVar[str] = "quality/page.html"
     shown: tuple[str, ...]  # keys of the tables that have rows
+    picture: Listing  # the table by area and year, cut into rows of decades
     marks: tuple[tuple[str, str], ...]  # each sign of the picture, and what it says
     kept: tuple[Sentence, ...]
     stated: str  # who stated it and when, or that nobody did
@@ -67,6 +69,7 @@ def build(session: Session, heading: Heading, question: QualityQuestion) -> Qual
         tables=tables,
         twins=frames.twins(heading, question),
         shown=tuple(table.key for table in tables),
+        picture=Listing(quality_tables.in_parts(quality_tables.by_year(found))),
         marks=say.key_of_marks(quality_tables.signs(found)),
         kept=kept.said,
         stated=_stated(said),

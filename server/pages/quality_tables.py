@@ -3,6 +3,8 @@
 import math
 from collections import Counter
 from collections.abc import Sequence
+from dataclasses import replace
+from itertools import groupby
 
 from server.exports.table import Cell, Column, Gap, GapKind, Row, Table
 from server.intake.checks import KINDS
@@ -12,6 +14,8 @@ from server.sentences import quality as say
 from server.sentences.text import _
 from server.store.records import Statement
 from server.store.statements import QUESTIONS
+
+MOST_ACROSS = 30  # years beside one another
 
 
 def tables(found: Quality, said: Sequence[Statement], warnings: Counter[str]) -> tuple[Table, ...]:
@@ -44,6 +48,30 @@ def by_year(found: Quality) -> Table:
         )
         if found.periods
         else (),
+    )
+
+
+def in_parts(table: Table) -> tuple[Table, ...]:
+    """The picture cut into rows of decades, so that each is as wide as a page at most."""
+    area, *years = table.columns
+    parts: list[list[int]] = [[]]
+    for _span, group in groupby(range(len(years)), key=lambda at: years[at].span):
+        decade = list(group)
+        if len(parts[-1]) + len(decade) > MOST_ACROSS and parts[-1]:
+            parts.append([])
+        parts[-1] += decade
+    return tuple(
+        replace(
+            table,
+            key=table.key if not number else f"{table.key}_{number + 1}",
+            columns=(area, *(years[at] for at in part)),
+            rows=tuple(
+                replace(row, cells=(row.cells[0], *(row.cells[1 + at] for at in part)))
+                for row in table.rows
+            ),
+        )
+        for number, part in enumerate(parts)
+        if part
     )
 
 

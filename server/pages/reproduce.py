@@ -14,8 +14,7 @@ from server.pages.page import Frame, Page
 from server.pages.reproduce_rows import Cell as FileCell
 from server.pages.reproduce_rows import Source, Stated, Unknown, cells, source, wanted
 from server.results.account import AccountQuestion
-from server.results.keys import BadValue
-from server.results.printed_tables import number, read
+from server.results.printed_tables import NotLookedUp, number, read
 from server.results.questions import address
 from server.results.reproducing import Found, reproduced
 from server.sentences import account as account_say
@@ -28,6 +27,8 @@ from server.store.connect import Session
 
 Options = tuple[tuple[str, str], ...]
 FINEST = 3  # decimals of what was printed that are told in full
+MOST_DIGITS = 10  # signs of a number that is shown as it stands
+LARGE = 1e9  # from here on numbers are shown as they stand
 MOST_CELLS = 200  # other numbers that are listed where they differ
 
 
@@ -99,7 +100,7 @@ def form(session: Session) -> ReproducePage:
 def build(
     session: Session, name: str, content: bytes, asked: Asked, *, most: int | None = None
 ) -> ReproducedPage:
-    """BadValue where no table is found, or its collection, edition or settings are not known;
+    """NotLookedUp where no table is found, or its collection, edition or settings are not known;
     TooLarge where it takes more than `most` looks."""
     file = read(content, name)
     of = source(session, asked.address or file.address)
@@ -155,7 +156,7 @@ def _stated(
     )
     code = code or (known[0] if len(known) == 1 else "")
     if code not in known:
-        raise BadValue(
+        raise NotLookedUp(
             _(
                 "The file does not say of which collection it is. Choose one: {known}.",
                 known=names.listed(known),
@@ -168,7 +169,7 @@ def _stated(
     edition = int(text) if text.isascii() and text.isdecimal() and len(text) < 10 else 0
     edition = edition or (standing.number if standing else 0)
     if editions.find(session, code, edition) is None:
-        raise BadValue(
+        raise NotLookedUp(
             _(
                 "{collection} has no edition {number}. Leave it out, or name one that there is.",
                 collection=code,
@@ -229,7 +230,7 @@ def _row(one: Found, collection: str, newest: int) -> Row:
             names.sex(at.sex),
             at.period,
             of.key,
-            one.wanted.text or _("nothing"),
+            _short(one.wanted.text, decimals) or _("nothing"),
             _number(one.stated),
             _number(one.newest),
             say.kind(one.kind),
@@ -238,6 +239,26 @@ def _row(one: Found, collection: str, newest: int) -> Row:
         href=address(collection, newest, question) if one.kind in ("revised", "astray") else "",
         decimals=decimals,
     )
+
+
+def _short(text: str, decimals: int) -> str:
+    """A printed number of many digits with those that are told, and that there are more."""
+    found = number(text)
+    if found is None or found.decimals <= decimals + 2 or abs(found.value) >= LARGE:
+        return text
+    return f"{found.value:.{decimals}f}…"
+
+
+def told_apart(printed: str, today: str) -> tuple[str, str]:
+    """Two numbers of many digits, with as many as tell them apart and one more."""
+    both = number(printed), number(today)
+    if max(len(printed), len(today)) <= MOST_DIGITS or both[0] is None or both[1] is None:
+        return printed, today
+    for digits in range(5, 17):
+        first, second = (f"{one.value:.{digits}g}" for one in both if one)
+        if first != second:
+            break
+    return tuple(f"{one.value:.{digits + 1}g}…" for one in both if one)  # type: ignore[return-value]
 
 
 def _number(value: float) -> Cell:
@@ -292,8 +313,9 @@ def _cells(unlike: list[FileCell]) -> Table:
             Column("today", _("today")),
         ),
         tuple(
-            Row((one.table or _("the file"), one.row, one.column, one.text, one.today or _("none")))
+            Row((one.table or _("the file"), one.row, one.column, text, today or _("none")))
             for one in unlike
+            for text, today in (told_apart(one.text, one.today),)
         ),
     )
 

@@ -32,6 +32,10 @@ _TELLING = ("title", "address", "edition", "settings", "collection")
 _NUMBER = re.compile(r"[+\-\u2212]?\d[\d,]*(?:\.(\d+))?(?:[eE][+-]?\d+)?")
 
 
+class NotLookedUp(BadValue):
+    """A file that is no table, or does not say what it is of (422)."""
+
+
 @dataclass(frozen=True, slots=True)
 class PrintedRow:
     number: int  # in the file, as a spreadsheet counts
@@ -54,7 +58,7 @@ class PrintedFile:
 
 
 def read(content: bytes, name: str) -> PrintedFile:
-    """Any form that intake can open, and JSON of ours. BadValue where no table is found,
+    """Any form that intake can open, and JSON of ours. NotLookedUp where no table is found,
     TooLarge where it has more rows than can be looked up."""
     if content.lstrip()[:1] == b"{":
         return _json(content, name)
@@ -69,8 +73,8 @@ def read(content: bytes, name: str) -> PrintedFile:
     return PrintedFile(name, said.get("address", ""), said, (_table("", rows),))
 
 
-def _no_table(name: str) -> BadValue:
-    return BadValue(
+def _no_table(name: str) -> NotLookedUp:
+    return NotLookedUp(
         _(
             "In {name} no table was found. Hand in a file as it was saved here (CSV, XLSX or JSON),"
             " or a table with the columns area, sex, year, indicator and value.",

@@ -1,5 +1,6 @@
 """How good the counts of an edition are: what is there, what the checks find in it, indices."""
 
+import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from functools import reduce
@@ -142,6 +143,7 @@ def ledger(tree: tuple[Area, ...], cells: Cells) -> Ledger:
     )
 
 
+_SPAN = re.compile(r"\b(\d{4})(?:–(\d{4}))?\b")
 Told = list[tuple[str, str, list[Fault]]]  # key of the check, its chapter, what it found
 
 
@@ -155,7 +157,7 @@ def _places(
     doubted: dict[tuple[str, str], set[str]] = {}
     for _, chapter, faults in told:
         for fault in faults:
-            for year in _years(fault):
+            for year in _years(fault, periods):
                 doubted.setdefault((str(fault.values.get("area")), year), set()).add(chapter)
     return {
         (area.code, year): _place(
@@ -183,10 +185,11 @@ def _place(held: Mapping[tuple[str, str], Vector], sexes: set[str], doubted: set
     )
 
 
-def _years(fault: Fault) -> tuple[str, ...]:
-    """The single year of a fault; none where all years are taken together."""
-    year = str(fault.values.get("year", ""))
-    return (year,) if year.isdigit() else ()
+def _years(fault: Fault, periods: tuple[str, ...]) -> set[str]:
+    """The year of a fault, or all years held that were taken together: 2001, 2003–2007."""
+    named = str(fault.values.get("year") or fault.values.get("years", ""))
+    spans = [(span[1], span[2] or span[1]) for span in _SPAN.finditer(named)]
+    return {year for year in periods for first, last in spans if first <= year <= last}
 
 
 def _finding(key: str, faults: Iterable[Fault]) -> Finding:

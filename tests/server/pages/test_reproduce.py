@@ -11,7 +11,7 @@ from engine.settings import SETTINGS
 from server.exports import csv, json, xlsx
 from server.pages import population_year, trend
 from server.pages.page import Page
-from server.pages.reproduce import Asked, ReproducedPage, build, form
+from server.pages.reproduce import FINEST, Asked, ReproducedPage, build, form, told_apart
 from server.pages.twins import twin
 from server.results.keys import BadValue, PopulationYear
 from server.results.loading import load
@@ -186,3 +186,31 @@ def test_a_table_that_takes_too_long_is_refused_and_a_terminal_is_offered(
     monkeypatch.setattr("server.results.printed_tables.MOST_ROWS", 9)
     with pytest.raises(TooLarge, match="has 10 rows; a table of at most 9"):
         build(isle, "t.csv", content, Asked(**beside))
+
+
+@pytest.mark.parametrize(
+    ("printed", "today"),
+    [
+        ("81.934567890123", "81.934599999999"),
+        ("0.00212345678901234", "0.00212345678901277"),
+        ("1234567.12345678", "1234567.12345679"),
+    ],
+)
+def test_numbers_of_many_digits_are_shown_as_far_as_they_differ(printed: str, today: str) -> None:
+    shown = told_apart(printed, today)
+    assert shown[0] != shown[1]
+    for text, whole in zip(shown, (printed, today), strict=True):
+        assert len(text) <= len(whole) + 1
+        assert float(text.rstrip("…")) == pytest.approx(float(whole), rel=1e-5)
+    assert told_apart("12.5", "13") == ("12.5", "13")
+    assert told_apart("withheld, 12 of 100", "81.934567890123") == (
+        ("withheld, 12 of 100", "81.934567890123")
+    )
+
+
+def test_a_printed_number_of_many_digits_says_that_there_are_more(isle: Session) -> None:
+    content = (HEAD + "north,f,2012,e0,12.345678901234\nnorth,f,2013,e0,12.34\n").encode()
+    page = build(isle, "t.csv", content, Asked(collection="isle", edition="1"))
+    table = page.table("figures")
+    shown = [row.cells[table.column("printed")] for row in table.rows]
+    assert shown == [f"{12.345678901234:.{FINEST + 1}f}…", "12.34"]

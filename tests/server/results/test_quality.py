@@ -77,6 +77,20 @@ def test_a_year_that_stands_out_is_marked_in_its_area_alone(session: Session) ->
     assert (jump.times, jump.areas, jump.years) == (1, ("fo",), ("1997",))
 
 
+def test_what_is_found_in_all_years_together_marks_each_of_them(session: Session) -> None:
+    """The person-years at 98 of the Danish file: told of all years, seen in each."""
+    grid = AgeGrid(tuple(range(100)))
+    found = judged(
+        session,
+        {f"dk.{sex}.{year}": danes(sex, year, grid) for sex in "fm" for year in denmark.YEARS}
+        | {"fo.f.1999": danes("f", 1999)},
+    )
+    (pooled,) = [one for one in found.findings if one.key == "old_age_rates_fall"]
+    assert (pooled.areas, pooled.years) == (("dk",), ("1974–2012",))
+    marked = {place for place, one in found.places.items() if "ages" in one.doubts}
+    assert marked == {("dk", str(year)) for year in denmark.YEARS}
+
+
 def test_what_is_lacking_is_told_apart(session: Session) -> None:
     stored_collection(session, "isle")
     held = cells("ab", years=(2001, 2002, 2003))

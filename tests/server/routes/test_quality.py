@@ -3,6 +3,8 @@
 import pytest
 from starlette.testclient import TestClient
 
+from server.exports.table import Column, Row, Table
+from server.pages.quality_tables import in_parts
 from server.sentences import quality as say
 from server.sentences.pieces import plain
 from server.store.connect import Session
@@ -93,3 +95,19 @@ def test_many_areas_and_years_are_counted() -> None:
     assert say.years(["2001", "2003"]) == "2001, 2003"
     assert say.years([str(year) for year in range(2001, 2010)]) == "9 of 2001 to 2009"
     assert plain(say.kept("{braces}", 2)).endswith("2 warnings and this note: “{braces}”")
+
+
+def test_the_picture_of_many_years_is_cut_into_decades(session: Session) -> None:
+    """No part is wider than a page, and together they are the whole table."""
+    years = [str(year) for year in range(1974, 2013)]
+    columns = (Column("area", "area"), *(Column(f"y{y}", y[2:], span=f"{y[:3]}0s") for y in years))
+    rows = tuple(Row((area, *(f"{area}{y}" for y in years)), shown=area) for area in "ab")
+    whole = Table("by_year", "What is known", columns, rows)
+    parts = in_parts(whole)
+    assert [len(part.columns) - 1 for part in parts] == [26, 13]
+    assert [one for part in parts for one in part.columns[1:]] == list(columns[1:])
+    for at, row in enumerate(rows):
+        assert [cell for part in parts for cell in part.rows[at].cells[1:]] == list(row.cells[1:])
+        assert {part.rows[at].cells[0] for part in parts} == {row.cells[0]}
+    assert len({part.key for part in parts}) == len(parts)
+    assert in_parts(parts[0]) == (parts[0],)

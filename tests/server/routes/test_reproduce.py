@@ -26,9 +26,12 @@ def test_a_saved_file_is_looked_up(reader: TestClient) -> None:
 def test_what_cannot_be_looked_up_is_refused(reader: TestClient) -> None:
     assert reader.post("/reproduce", data={"edition": "1"}).status_code == 422
     empty = {"file": ("t.csv", b"", "text/csv")}
-    assert reader.post("/reproduce", files=empty).status_code == 400
+    answer = reader.post("/reproduce", files=empty)
+    assert answer.status_code == 422
+    assert "This table cannot be looked up" in answer.text
+    assert "address cannot be read" not in answer.text
     table = {"file": ("t.csv", b"area,sex,year,value\nnorth,f,2014,8\n", "text/csv")}
-    assert reader.post("/reproduce", files=table, data={"edition": "7"}).status_code == 400
+    assert reader.post("/reproduce", files=table, data={"edition": "7"}).status_code == 422
 
 
 def test_above_the_cap_it_is_a_question_too_large(
