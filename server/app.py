@@ -25,6 +25,7 @@ from server.pages.page import Page
 from server.pages.printed import printed
 from server.pages.twins import twin
 from server.results.holdings import NotInEdition
+from server.results.printed_tables import NotLookedUp
 from server.results.questions import BadAddress
 from server.results.series import TooLarge
 from server.routes import ROUTERS
@@ -46,6 +47,7 @@ from server.web.static import Static, asset
 # error class -> status and title; the error's own text is the answer. The nearest class counts.
 ERRORS: tuple[tuple[type[Exception], int, str], ...] = (
     (BadAddress, 400, "This address cannot be read"),
+    (NotLookedUp, 422, "This table cannot be looked up"),
     (NotAllowed, 403, "Not allowed"),
     (errors.Missing, 404, "No such page"),
     (NotInEdition, 404, "No such page"),
