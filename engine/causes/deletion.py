@@ -67,7 +67,7 @@ def gain(*, part: float = 1.0, law: str = "constant_ratio") -> CauseNumber:
     return CauseNumber(
         key=f"gain{'' if part == 1 else f'_{100 * part:g}'}{NAMES[law]}",
         symbol="gain",
-        label=f"Gain in life expectancy if it {away}",
+        label=f"Gain in life expectancy if it {away}{OF_LAW[law]}",
         unit=YEARS,
         definition=(
             f"The years that life expectancy at birth would be longer if deaths of the cause {away}"
@@ -118,6 +118,7 @@ def _slopes(parted: Parted, found: Deleted, part: float, value: Array) -> Slopes
 
 
 NAMES = {"constant_ratio": "", "uniform": "_uniform"}
+OF_LAW = {"constant_ratio": "", "uniform": ", deaths lying evenly"}
 FORMULAS = {
     "constant_ratio": "p(x)^R in place of p(x)",
     "uniform": "q'(x) = b - sqrt(b^2 - 2 R q(x)), b = 1 - (1/2 - R) q(x), in place of q(x)",

@@ -3,6 +3,7 @@
 from dataclasses import dataclass
 from typing import ClassVar
 
+from engine.causes.registry import NUMBERS
 from engine.indicators import GROUPS
 from engine.settings import SETTINGS
 from engine.standards import STANDARDS
@@ -32,6 +33,7 @@ class MethodsPage(Page):
     template: ClassVar[str] = "methods/page.html"
     links: tuple[Sentence, ...]  # to every chapter and chain, since the page is long
     chapters: tuple[Chapter, ...]
+    by_cause: tuple[Entry, ...]  # numbers that every cause of death has
     chains: tuple[Entry, ...]
 
 
@@ -63,9 +65,14 @@ def build() -> MethodsPage:
         ),
         links=(
             *((Piece(one.label, f"#{one.key}"),) for one in chapters),
+            (Piece(_("Numbers by cause of death"), "#by-cause"),),
             *((Piece(one.label, f"#{one.key}"),) for one in chains),
         ),
         chapters=chapters,
+        by_cause=tuple(
+            Entry(f"cause-{one.key}", _(one.label), _(one.symbol), say.cause_number(one))
+            for one in NUMBERS.values()
+        ),
         chains=chains,
         tables=(_indicators(), _settings(), _standards(), _checks()),
         twins={twin: f"/methods.{twin}" for twin in ("csv", "xlsx", "json")},

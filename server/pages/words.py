@@ -3,6 +3,7 @@
 from dataclasses import dataclass
 from typing import ClassVar
 
+from engine.causes.registry import NUMBERS
 from engine.indicators import GROUPS
 from server.exports.table import GapKind
 from server.pages.page import Frame, Page
@@ -45,6 +46,10 @@ def build() -> WordsPage:
             (_("How it is compared"), say.comparing()),
             (_("What stands in for counts"), say.modelling()),
             *figures,
+            (
+                _("Figures by cause of death"),
+                tuple((_(one.label), _(one.definition)) for one in NUMBERS.values()),
+            ),
         ),
         marks=tuple((GapKind(kind), name, meaning) for kind, name, meaning in say.marks()),
     )

@@ -8,9 +8,8 @@ import numpy as np
 from engine import indicators
 from engine import settings as named
 from engine.ages import Array
-from engine.causes import decrements, deletion, losses, rates
+from engine.causes import losses, rates, registry
 from engine.causes.counts import CauseCounts
-from engine.causes.number import CauseNumber
 from engine.causes.number import estimates as by_cause
 from engine.estimates import Estimate
 from engine.indicator import Indicator
@@ -31,7 +30,7 @@ from server.store.connect import Session
 from server.store.heading import Heading
 from server.store.records import Cause
 
-NUMBERS: tuple[CauseNumber, ...] = (*decrements.FAMILY, *losses.FAMILY, deletion.GAIN)
+NUMBERS = tuple(one for one in registry.NUMBERS.values() if one.key != "gain_uniform")
 RATES: tuple[Indicator, ...] = tuple(
     indicators.find(key) for key in ("cdr", "asr_esp2013", "asr75_esp2013", "yll75", "yll_ref")
 )

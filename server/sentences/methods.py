@@ -1,5 +1,6 @@
 """How figures are made, as the registries state it."""
 
+from engine.causes.number import CauseNumber
 from engine.decomposition import NOT_DECOMPOSED
 from engine.indicator import Indicator
 from engine.settings import Settings
@@ -58,7 +59,30 @@ def interval(one: Indicator) -> str:
     )
 
 
-def needs(one: Indicator) -> str:
+def cause_number(one: CauseNumber) -> Facts:
+    """What a number by cause is, how it is calculated and who says so."""
+    return (
+        (_("Definition"), _(one.definition)),
+        (_("Formula"), _(one.formula)),
+        (_("Unit"), _(one.unit.label)),
+        (
+            _("Interval"),
+            _(
+                "From its slopes in the death rates of the cause and of all others, deaths under"
+                " each cause taken as Poisson: by the gamma laws of those that raise it and of"
+                " those that lower it."
+            ),
+        ),
+        (
+            _("Sum over causes"),
+            _("The number of all causes.") if one.adds_up else _("They do not add up."),
+        ),
+        (_("Needs"), needs(one)),
+        (_("Source"), _(one.source)),
+    )
+
+
+def needs(one: Indicator | CauseNumber) -> str:
     """What the counts must hold before it is given."""
     wants = one.needs
     parts = [_("enough person-years")]

@@ -14,6 +14,7 @@ from pathlib import Path
 import jinja2
 from jinja2 import nodes
 
+from engine.causes.registry import NUMBERS
 from engine.indicators import GROUPS
 from engine.settings import SETTINGS
 from server.intake.checks import CHAPTERS, KINDS
@@ -91,7 +92,7 @@ def _of_template(source: str) -> Iterator[str]:
 
 
 def _of_registries() -> Iterator[str]:
-    for registry in (GROUPS, SETTINGS.values(), CHAPTERS, KINDS.values()):
+    for registry in (GROUPS, NUMBERS.values(), SETTINGS.values(), CHAPTERS, KINDS.values()):
         yield from _read(registry)
     for settings in SETTINGS.values():
         yield from _read(settings.stages)

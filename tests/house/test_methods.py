@@ -4,6 +4,7 @@ import dataclasses
 
 import pytest
 
+from engine.causes.registry import NUMBERS
 from engine.indicators import INDICATORS
 from engine.settings import SETTINGS
 from server.intake.checks import KINDS
@@ -29,6 +30,14 @@ def test_every_indicator_stands_there_with_all_it_declares(page: MethodsPage) ->
         if not declared.smooth:
             assert declared.why_not_smooth, entry.key
             assert declared.why_not_smooth in printed, entry.key
+
+
+def test_every_number_by_cause_stands_there(page: MethodsPage) -> None:
+    assert [entry.key for entry in page.by_cause] == [f"cause-{key}" for key in NUMBERS]
+    for entry, declared in zip(page.by_cause, NUMBERS.values(), strict=True):
+        printed = str(entry.facts)
+        for text in (declared.definition, declared.formula, declared.source, declared.unit.label):
+            assert text in printed, entry.key
 
 
 def test_every_settings_chain_stands_there_with_its_stages(page: MethodsPage) -> None:
