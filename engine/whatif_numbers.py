@@ -86,7 +86,9 @@ def what_if(
     fewer = parts.deaths - change.deaths(parts)
     left = years_left(two.now)[..., None, :]
     first = {one.key: first_order(one, two.now, two.then) for one in indicators}
-    return WhatIf(now, then, moves, first, fewer, fewer * left)
+    with np.errstate(invalid="ignore"):
+        years = np.where(fewer == 0, 0.0, fewer * left)
+    return WhatIf(now, then, moves, first, fewer, years)
 
 
 def first_order(one: Indicator, now: Chain, then: Chain) -> Array:

@@ -146,13 +146,33 @@ def listed(changes: Sequence[str]) -> Sentence:
     return phrase(_("Changed: {changes}."), changes="; ".join(changes))
 
 
+def _deaths_alone(parts: dict[str, str], fewer: float) -> str:
+    """Where the table does not tell how many years would have been left."""
+    if fewer > 0:
+        return n_(
+            "Among the people there were in {year} that stands for one death fewer.",
+            "Among the people there were in {year} that stands for {deaths} deaths fewer.",
+            round(abs(fewer)),
+            **parts,
+        )
+    return n_(
+        "Among the people there were in {year} that stands for one death more.",
+        "Among the people there were in {year} that stands for {deaths} deaths more.",
+        round(abs(fewer)),
+        **parts,
+    )
+
+
 def stands_for(period: str, fewer: float, left: float) -> Sentence:
     """Deaths and years of life behind the change, in the year's own population; where some rates
     rise and others fall, the balance."""
-    count, lived = abs(fewer), whole(abs(left))
-    if count < 0.5:
+    count = abs(fewer)
+    if not count >= 0.5:
         return ()
-    parts = {"year": period, "years": lived, "deaths": whole(count)}
+    parts = {"year": period, "deaths": whole(count)}
+    if not math.isfinite(left):
+        return phrase("{text}", text=_deaths_alone(parts, fewer))
+    parts["years"] = whole(abs(left))
     text = (
         n_(
             "Among the people there were in {year} that stands for one death fewer and for {years}"
