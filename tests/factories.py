@@ -3,6 +3,7 @@
 import datetime as dt
 from collections.abc import Callable, Collection, Iterable, Mapping
 from dataclasses import replace
+from typing import Any
 
 import numpy as np
 from hypothesis import strategies as st
@@ -13,6 +14,9 @@ from engine.causes.counts import CauseCounts
 from engine.chance import Chance, limits
 from engine.count_limits import Interval
 from engine.panel import Panel
+from engine.settings import find as find_settings
+from engine.standards.reference_table import reference_panel
+from engine.standards.remaining_years import REFERENCES
 from engine.tables import LifeTable, from_rates
 from server.accounts.viewer import LOCAL
 from server.actions import masking, totals
@@ -20,8 +24,15 @@ from server.actions.check_upload import check_upload
 from server.actions.map_upload import map_upload
 from server.actions.receive_upload import receive_upload
 from server.intake import mapping as intake
+from server.results.causes import Causes
+from server.results.compared import Asked, Comparison, compared
+from server.results.holdings import Holdings
+from server.results.loading import Loaded
+from server.results.questions import ComparisonQuestion, PopulationYear
+from server.results.sides import Elsewhere, Pair
 from server.store import areas, collections, editions, records, schedules, uploads
 from server.store.connect import Session, transaction
+from server.store.heading import Heading
 from server.store.records import Area, Basis, Change, Edition, Key, Selection, Vector
 
 # ---- engine: panels -----------------------------------------------------------------------------
@@ -335,3 +346,57 @@ def checked_upload(
     map_upload(session, upload_id=upload.id, mappings=mappings, basis=basis, by=LOCAL, now=NOON)
     check_upload(session, upload_id=upload.id)
     return uploads.find(session, upload.id)
+
+
+# ---- results: a comparison without a database ----------------------------------------------------
+
+
+def comparison_of(
+    this: Panel,
+    that: Panel,
+    *,
+    of: str = "e0",
+    settings: str = "almanac-1",
+    causes: tuple[CauseCounts, CauseCounts] | None = None,
+    provisional: bool = False,
+    sides: tuple[str, str] = ("north.f.2014", "north.f.2004"),
+    **asked: Any,
+) -> Comparison:
+    """The explained difference of two panels, as a page has it. `asked` are further fields of the
+    question: a `standard` takes the place of that panel."""
+    codes = tuple(PopulationYear.parse(one) for one in sides)
+    question = ComparisonQuestion(codes[0], codes[1], of, settings=settings, **asked)
+    areas_ = tuple(Area(code, code.title()) for code in dict.fromkeys(one.area for one in codes))
+    known = Heading(
+        records.Collection(1, "isle", "The isle", "Desk", 1, NOON),
+        Edition(1, 0, NOON, "the desk", "", "0" * 64, None, BASIS),
+        1,
+    )
+    periods = tuple(sorted({one.period for one in codes}))
+    held = Holdings(areas_, ("f", "m"), periods, dict.fromkeys(codes, "final"))
+    chosen = find_settings(settings)
+    status = "provisional" if provisional else "final"
+    listed = () if causes is None else cause_list(causes[0].deaths.shape[-2])
+    loaded = [
+        Loaded(
+            panel,
+            status if at == 0 else "final",
+            causes=None if causes is None else Causes(listed, causes[at]),
+        )
+        for at, panel in enumerate((this, that))
+    ]
+    if question.standard:
+        standard = reference_panel(REFERENCES[question.standard], chosen)
+        loaded[1] = Loaded(standard, "final")
+    other = Elsewhere(known, held) if question.that_edition else None
+    pair = Pair(loaded[0], loaded[1], None, None, None, None)
+    return compared(Asked(known, held, other, question, chosen), pair, (), None)
+
+
+def cause_list(count: int) -> tuple[records.Cause, ...]:
+    """Causes of death named by letters."""
+    names = "ABCDEFGHIJKLMNOPQRSTUVWXYZ"
+    return tuple(
+        records.Cause(f"cause-{name.lower()}", f"Cause {name}", ranges=(f"{name}00-{name}99",))
+        for name in names[:count]
+    )

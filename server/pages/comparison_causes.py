@@ -290,7 +290,7 @@ def _remainder(of: CauseParts, one: Printed, columns: int) -> list[Row]:
     if abs(of.remainder) <= 1e-9 * max(abs(of.difference), 1e-9):
         return []
     none = number(np.nan, _("no cause, hence no interval"))
-    rest: list[Cell] = [none] * (columns - 1)
+    rest: list[Cell] = [none] * columns
     cells: list[Cell] = [none, none, one.scale * of.remainder, *rest]
     if of.path is not None:
         cells[-1] = one.scale * (of.difference - float(of.path.sum()))
