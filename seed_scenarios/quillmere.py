@@ -94,9 +94,9 @@ def deliver(session: Session, *, now: dt.datetime) -> None:
     create_collection(session, code=CODE, name=NAME, owner=OFFICE.name, by=OFFICE, now=now)
     files = _files(counted(revised=False), YEARS, EVERYWHERE)
     files["areas"] = ("quillmere-areas.csv", areas_csv())
-    _hand_in(session, files, note=NOTES[0], now=now)
+    hand_in(session, files, note=NOTES[0], now=now)
     files = _files(counted(revised=True), (REVISED,), ("northlade", WHOLE.code))
-    _hand_in(session, files, note=NOTES[1], now=now)
+    hand_in(session, files, note=NOTES[1], now=now)
 
 
 def recount(session: Session, *, now: dt.datetime) -> None:
@@ -107,7 +107,7 @@ def recount(session: Session, *, now: dt.datetime) -> None:
         "population": ("quillmere-population-after-census.csv", people),
         "breaks": ("quillmere-breaks.csv", breaks_csv()),
     }
-    _hand_in(session, files, note=NOTES[2], now=now, basis=replace(BASIS, vintage=VINTAGE))
+    hand_in(session, files, note=NOTES[2], now=now, basis=replace(BASIS, vintage=VINTAGE))
 
 
 def protect(session: Session, *, now: dt.datetime) -> None:
@@ -124,13 +124,20 @@ def _files(counts: dict[str, Counts], years: tuple[int, ...], areas: tuple[str, 
     }
 
 
-def _hand_in(
-    session: Session, files: Files, *, note: str, now: dt.datetime, basis: Basis = BASIS
+def hand_in(
+    session: Session,
+    files: Files,
+    *,
+    note: str,
+    now: dt.datetime,
+    collection: str = CODE,
+    mappings: dict[str, Mapping] = MAPPINGS,
+    basis: Basis = BASIS,
 ) -> None:
-    """One upload, from the bytes to an edition."""
+    """One upload of the office, from the bytes to an edition."""
     upload = receive_upload(
         session,
-        collection=CODE,
+        collection=collection,
         files=[(role, name, content) for role, (name, content) in files.items()],
         by=OFFICE,
         now=now,
@@ -138,7 +145,7 @@ def _hand_in(
     map_upload(
         session,
         upload_id=upload.id,
-        mappings={role: MAPPINGS[role] for role in files},
+        mappings={role: mappings[role] for role in files},
         basis=basis,
         by=OFFICE,
         now=now,

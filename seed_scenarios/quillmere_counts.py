@@ -70,15 +70,22 @@ class Counts:
 
 def death_rates(region: Region, year: int) -> Array:
     """Death rates of one region and year by sex and single year of age, [sex, 120]."""
-    since, ages = year - 1999, _AGES + 0.5
-    rates = np.stack([_law(region, since, men=men) for men in (False, True)])
+    rates = np.stack([_law(region, year - 1999, men=men) for men in (False, True)])
+    rates[1] *= stalled(region, year)
+    return np.asarray(rates * heated(region, year))
+
+
+def stalled(region: Region, year: int) -> Array:
+    """By how much the closing of the plant multiplies death rates of men, by single age, [120]."""
+    ages, rise = _AGES + 0.5, 0.0
     if year >= _CLOSING and region.code == "tollbay":
         rise = 0.62 * min(1.0, (year - _CLOSING + 1) / 8)
-        working = np.clip((ages - 27) / 5, 0, 1) * np.clip((62 - ages) / 5, 0, 1)
-        rates[1] *= 1 + rise * working
-    if year == HEAT:
-        rates *= 1 + region.heat * np.clip((ages - 73) / 4, 0, 1)
-    return rates
+    return 1 + rise * np.clip((ages - 27) / 5, 0, 1) * np.clip((62 - ages) / 5, 0, 1)
+
+
+def heated(region: Region, year: int) -> Array:
+    """By how much the hot summer multiplies death rates, by single age, [120]."""
+    return 1 + (year == HEAT) * region.heat * np.clip((_AGES + 0.5 - 73) / 4, 0, 1)
 
 
 def _law(region: Region, since: int, *, men: bool) -> Array:

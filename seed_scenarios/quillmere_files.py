@@ -20,52 +20,62 @@ from seed_scenarios.quillmere_counts import (
     Region,
 )
 
-_WORDS = {"f": "women", "m": "men"}
-_PROVISIONAL = YEARS[-1]
+WORDS = {"f": "women", "m": "men"}
+PROVISIONAL = YEARS[-1]
 
 
 def deaths_csv(counted: dict[str, Counts], years: tuple[int, ...], areas: tuple[str, ...]) -> bytes:
     """Deaths by year, area, sex and age, with the year's status."""
     lines = ["year,status,area,area_name,sex,age,deaths"]
     for region, year, sex, at in _cells(years, areas):
-        status = "provisional" if year == _PROVISIONAL else "final"
-        deaths = _closed(region, counted[region.code].deaths[at])
+        status = "provisional" if year == PROVISIONAL else "final"
+        deaths = closed(region, counted[region.code].deaths[at])
         lines += [
-            f"{year},{status},{region.code},{region.name},{_WORDS[sex]},{age},{count}"
-            for age, count in zip(_ages(region), deaths, strict=True)
+            f"{year},{status},{region.code},{region.name},{WORDS[sex]},{age},{count}"
+            for age, count in zip(ages(region), deaths, strict=True)
         ]
-    return _text(lines)
+    return text(lines)
 
 
 def population_csv(
-    counted: dict[str, Counts], years: tuple[int, ...], areas: tuple[str, ...]
+    counted: dict[str, Counts],
+    years: tuple[int, ...],
+    areas: tuple[str, ...],
+    *,
+    districts: bool = True,
 ) -> bytes:
     """Residents on 1 July by year, area, sex and age."""
     lines = ["year,area,area_name,sex,age,population"]
-    for region, year, sex, at in _cells(years, areas):
-        people = _closed(region, counted[region.code].population[at])
+    for region, year, sex, at in _cells(years, areas, districts=districts):
+        people = closed(region, counted[region.code].population[at])
         lines += [
-            f"{year},{region.code},{region.name},{_WORDS[sex]},{age},{count}"
-            for age, count in zip(_ages(region), people, strict=True)
+            f"{year},{region.code},{region.name},{WORDS[sex]},{age},{count}"
+            for age, count in zip(ages(region), people, strict=True)
         ]
-    return _text(lines)
+    return text(lines)
 
 
-def births_csv(counted: dict[str, Counts], years: tuple[int, ...], areas: tuple[str, ...]) -> bytes:
+def births_csv(
+    counted: dict[str, Counts],
+    years: tuple[int, ...],
+    areas: tuple[str, ...],
+    *,
+    districts: bool = True,
+) -> bytes:
     """Live births, stillbirths and deaths before 28 days by year, area and sex of the child."""
     lines = ["year,area,area_name,sex,births,stillbirths,neonatal_deaths"]
-    for region, year, sex, at in _cells(years, areas):
+    for region, year, sex, at in _cells(years, areas, districts=districts):
         counts = counted[region.code]
         numbers = (counts.births[at], counts.stillbirths[at], counts.neonatal_deaths[at])
-        where = (year, region.code, region.name, _WORDS[sex])
+        where = (year, region.code, region.name, WORDS[sex])
         lines.append(",".join(map(str, (*where, *numbers))))
-    return _text(lines)
+    return text(lines)
 
 
 def areas_csv() -> bytes:
     """What became of the codes of Tollbay's two districts."""
     before = JOINED - 1
-    return _text(
+    return text(
         [
             "code,becomes,from,to,name",
             f"{TOWN.code},tollbay,,{before},Tollbay",
@@ -76,7 +86,7 @@ def areas_csv() -> bytes:
 
 def breaks_csv() -> bytes:
     """The new population base, and the year of the hot summer."""
-    return _text(
+    return text(
         [
             "area,year,kind,note",
             f",{REBASED},population,after the census of 2021",
@@ -86,21 +96,25 @@ def breaks_csv() -> bytes:
 
 
 def _cells(
-    years: tuple[int, ...], areas: tuple[str, ...]
+    years: tuple[int, ...], areas: tuple[str, ...], *, districts: bool = True
 ) -> list[tuple[Region, int, str, tuple[int, int]]]:
     """Every area, year and sex asked for, with its place in the arrays; Tollbay by its districts
-    where there were two."""
+    where there were two, unless they are added up already."""
     return [
         (part, year, sex, (YEARS.index(year), row))
         for region in (*REGIONS, WHOLE)
         if region.code in areas
         for year in years
-        for part in ((TOWN, SHORE) if region.code == "tollbay" and year < JOINED else (region,))
+        for part in ((TOWN, SHORE) if districts and _parted(region, year) else (region,))
         for row, sex in enumerate(SEXES)
     ]
 
 
-def _ages(region: Region) -> list[str]:
+def _parted(region: Region, year: int) -> bool:
+    return region.code == "tollbay" and year < JOINED
+
+
+def ages(region: Region) -> list[str]:
     starts = STARTS[: STARTS.index(region.open_age) + 1]
     closed = [
         str(start) if end - start == 1 else f"{start}-{end - 1}" for start, end in pairwise(starts)
@@ -108,11 +122,11 @@ def _ages(region: Region) -> list[str]:
     return [*closed, f"{region.open_age}+"]
 
 
-def _closed(region: Region, counts: NDArray[np.int64]) -> list[int]:
-    """Counts by age with everyone from the region's open age in one group."""
+def closed(region: Region, counts: NDArray[np.int64]) -> NDArray[np.int64]:
+    """Counts [age, ...] with everyone from the region's open age in one group."""
     last = STARTS.index(region.open_age)
-    return [*counts[:last].tolist(), int(counts[last:].sum())]
+    return np.concatenate([counts[:last], counts[last:].sum(axis=0, keepdims=True)])
 
 
-def _text(lines: list[str]) -> bytes:
+def text(lines: list[str]) -> bytes:
     return ("\r\n".join(lines) + "\r\n").encode()

@@ -12,7 +12,7 @@ from markupsafe import Markup
 from starlette.exceptions import HTTPException
 from starlette.types import ASGIApp, Receive, Scope, Send
 
-from seed_scenarios import quillmere
+from seed_scenarios import demonstration
 from server.accounts.viewer import NotAllowed
 from server.actions.works import works
 from server.charts.chart import Chart
@@ -92,7 +92,7 @@ def create_app(
     )
     app.state.config = config
     app.state.sessions = sessions(engine)
-    app.state.demonstration = quillmere
+    app.state.demonstration = demonstration
     app.state.book = JobBook(app.state.sessions, lambda: dt.datetime.now(dt.UTC))
     app.state.executor = executor(app.state.book, app.state.sessions)
     app.state.web = _web()

@@ -12,7 +12,7 @@ from hypothesis import settings as hypothesis_settings
 from sqlalchemy import Engine, event
 from sqlalchemy.orm import Session, sessionmaker
 
-from seed_scenarios import quillmere
+from seed_scenarios import quillmere, quillmere_causes
 from server.config import Config
 from server.store.connect import make_engine, sessions
 from server.store.migrating import migrate
@@ -135,6 +135,7 @@ def demonstration(shared: Path, delivered: Path) -> Path:
         with opened(folder) as session:
             quillmere.recount(session, now=DEMONSTRATED)
             quillmere.protect(session, now=DEMONSTRATED)
+            quillmere_causes.build(session, now=DEMONSTRATED)
 
     return once(shared, "demonstration", fill)
 

@@ -3,7 +3,7 @@
 import argparse
 import datetime as dt
 
-from seed_scenarios import quillmere
+from seed_scenarios import demonstration
 from server.cli.database import bring_up
 from server.cli.opened import opened
 from server.cli.options import Commands, add_command, add_port
@@ -37,9 +37,10 @@ def run(asked: argparse.Namespace, config: Config) -> int:
         require_port(config)
     print(bring_up(config))
     with opened(config) as session:
-        if any(one.code == quillmere.CODE for one in collections.all_collections(session)):
-            print(_("The demonstration collection is there already; nothing was changed."))
-        else:
+        there = [one.code for one in collections.all_collections(session)]
+        if demonstration.lacking(there):
             print(_("Loading the demonstration collection (a few seconds) ..."), flush=True)
-            quillmere.build(session, now=dt.datetime.now(dt.UTC))
+            demonstration.build(session, now=dt.datetime.now(dt.UTC), there=there)
+        else:
+            print(_("The demonstration collection is there already; nothing was changed."))
     return 0 if asked.load_only else serve(config)

@@ -27,11 +27,11 @@ def begin(request: Request, session: SessionDep) -> Response:
 
 @router.post("/demonstration", dependencies=[needs(Right.COMMIT)])
 def load_demonstration(request: Request, session: SessionDep) -> Response:
-    """Load it, unless it is there."""
-    story = request.app.state.demonstration
-    if all(one.code != story.CODE for one in collections.all_collections(session)):
-        story.build(session, now=dt.datetime.now(dt.UTC))
-    return redirect(f"/c/{story.CODE}", status=303)
+    """Load what of it is not there."""
+    demonstration = request.app.state.demonstration
+    there = [one.code for one in collections.all_collections(session)]
+    demonstration.build(session, now=dt.datetime.now(dt.UTC), there=there)
+    return redirect(f"/c/{demonstration.CODE}", status=303)
 
 
 @router.api_route("/templates/{name}.csv", methods=READ, dependencies=[needs(Right.READ)])
