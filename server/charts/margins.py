@@ -5,6 +5,7 @@ from server.charts.scales import decimals
 from server.charts.template import CHARACTER, Measure
 
 LONGEST_NARROW = 26  # characters of a row's name on the phone
+LONGEST_END = 16  # of its last parts, where the first ones are cut
 ENDS = 28  # px between the last point and the edge, beside the label itself
 
 
@@ -33,10 +34,14 @@ def _longest_tick(chart: Chart) -> int:
 
 
 def short_name(text: str, chart: Chart, measure: Measure) -> str:
-    """The name of a row, cut where it would take more than half the phone."""
+    """The name of a row, cut where it would take more than half the phone; its last parts, such as
+    sex and year, are kept, since rows of one area have no other name."""
     if chart.x_kind != "amount" or not measure.narrow or len(text) <= LONGEST_NARROW:
         return text
-    return text[: LONGEST_NARROW - 1].rstrip(" ,") + "…"
+    parts = text.split(", ")
+    ends = ("".join(f", {part}" for part in parts[-kept:]) for kept in (2, 1) if kept < len(parts))
+    end = next((one for one in ends if len(one) <= LONGEST_END), "")
+    return text[: LONGEST_NARROW - 1 - len(end)].rstrip(" ,") + "…" + end
 
 
 def _longest_name(chart: Chart, measure: Measure) -> int:

@@ -131,9 +131,18 @@ def key_of_marks(signs: str) -> Pairs:
     """What each sign says, of those that stand in a picture."""
     known = (
         (HELD["complete"], _("deaths and population are there, and no check finds anything")),
-        (DOUBTS["years"], _("a check of years finds something in this year")),
-        (DOUBTS["ages"], _("a check of sexes or ages does")),
-        (DOUBTS["completeness"], _("a check of completeness does")),
+        (
+            DOUBTS["years"],
+            _("a check of years finds something, in this year or in several together"),
+        ),
+        (
+            DOUBTS["ages"],
+            _("a check of sexes or ages finds something, in this year or in several together"),
+        ),
+        (
+            DOUBTS["completeness"],
+            _("a check of completeness finds something, in this year or in several together"),
+        ),
         (PROVISIONAL, _("provisional")),
         (ESTIMATED, _("split by shares, or worked out from rates")),
         (HELD["part"], _("a sex or one of the two counts is missing in part")),

@@ -17,9 +17,28 @@ def test_names_are_cut_on_the_phone_only() -> None:
     name = RANKED.y_text[0]
     assert short_name(name, RANKED, WIDE) == name
     cut = short_name(name, RANKED, NARROW)
-    assert (len(cut) <= LONGEST_NARROW, cut[-1], name.startswith(cut[:-1])) == (True, "…", True)
+    head, _mark, end = cut.partition("…")
+    assert len(cut) <= LONGEST_NARROW
+    assert name.startswith(head)
+    assert name.endswith(end)
     other = a_chart(y_text=("a" * 40,))
     assert short_name("a" * 40, other, NARROW) == "a" * 40
+
+
+def test_rows_of_one_area_keep_their_sex_and_year() -> None:
+    names = [
+        f"Copenhagen, inner and outer city together, {sex}, {year}"
+        for sex in ("women", "men", "persons")
+        for year in (2011, 2012)
+    ]
+    cut = [short_name(name, RANKED, NARROW) for name in names]
+    assert cut[:2] == ["Copenhagen…, women, 2011", "Copenhagen…, women, 2012"]
+    assert len(set(cut)) == len(names)
+    assert all(len(one) <= LONGEST_NARROW for one in cut)
+    assert short_name("Frederiksborg and Bornholm, men, 2011", RANKED, NARROW).endswith(
+        ", men, 2011"
+    )
+    assert short_name("x" * 40, RANKED, NARROW) == "x" * (LONGEST_NARROW - 1) + "…"
 
 
 def test_rows_reach_from_nought_to_their_amount() -> None:
