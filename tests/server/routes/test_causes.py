@@ -109,7 +109,7 @@ def test_twins_hold_the_same_numbers(reader: TestClient) -> None:
     for key in held:
         answer = reader.get(f"/c/isle/1/causes.csv{QUERY}&table={key}")
         assert answer.status_code == 200, key
-        assert len(list(csv.reader(io.StringIO(answer.text)))) > 3
+        assert len(list(csv.reader(io.StringIO(answer.text)))) >= 3
     assert reader.get(f"/c/isle/1/causes.xlsx{QUERY}").status_code == 200
 
 
