@@ -74,6 +74,11 @@ QUESTIONS: tuple[Question, ...] = (
     PopulationYearQuestion(PopulationYear("cape", "f", YEAR)),
     PopulationYearQuestion(PopulationYear("east", "m", YEAR), settings="almanac-2"),
     ComparisonQuestion(PopulationYear("east", "f", YEAR), PopulationYear("south", "f", YEAR)),
+    ComparisonQuestion(
+        PopulationYear("east", "f", YEAR), PopulationYear("whole", "f", YEAR), overlap="rest"
+    ),
+    ComparisonQuestion(*[PopulationYear("east", "f", YEAR)] * 2, that_edition=1),
+    ComparisonQuestion(*[PopulationYear("east", "m", YEAR)] * 2, standard="gbd2010"),
     TrendQuestion("e0", ("east", "south"), ("f", "m"), YEAR, YEAR),
     CurvesQuestion(PopulationYear("south", "m", YEAR)),
     ContentsQuestion(),

@@ -100,6 +100,8 @@ def questions() -> Iterator[Question]:
     for area in AREAS[1:]:
         yield _pair((area, "f", REVISED), (WHOLE.code, "f", REVISED))
         yield _pair((area, "p", LAST), (area, "p", FIRST))
+        yield replace(_pair((area, "f", LAST), (WHOLE.code, "f", LAST)), overlap="rest")
+        yield replace(_pair((area, "m", LAST), (area, "m", LAST)), standard="gbd2010")
     for settings in SETTINGS:
         yield ContentsQuestion(settings=settings)
         yield _trend("e0", settings)
