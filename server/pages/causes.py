@@ -27,7 +27,7 @@ from server.results.questions import (
     PopulationYearQuestion,
     address,
 )
-from server.sentences import basis, care, names, sharing
+from server.sentences import basis, care, cause_methods, names, sharing
 from server.sentences import causes as say
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.standing import Headline
@@ -208,7 +208,7 @@ def _cautions(session: Session, found: CauseFigures) -> tuple[Caution, ...]:
             caution(found.loaded),
             basis.provisional(provisional_years),
             moved_before,
-            say.unclear(
+            cause_methods.unclear(
                 found.held.of_kind,
                 float(panel.deaths.sum()),
                 provisional=bool(provisional_years),
@@ -218,7 +218,7 @@ def _cautions(session: Session, found: CauseFigures) -> tuple[Caution, ...]:
             ),
             basis.few_person_years(float(panel.exposure.sum()), settings),
         ],
-        below=[say.certified(), say.no_forecast(), *basis.reading(settings)],
+        below=[cause_methods.certified(), cause_methods.no_forecast(), *basis.reading(settings)],
     )
 
 
@@ -230,7 +230,7 @@ def _computed(found: CauseFigures) -> tuple[Sentence, ...]:
         if one.ratio is not None
     ]
     return (
-        *say.computed(choice.pairs if choice else (), ratios),
+        *cause_methods.computed(choice.pairs if choice else (), ratios),
         *(_method(one) for one in NUMBERS),
         *basis.computed(found.settings),
         *sharing.computed(found.panel),
@@ -243,7 +243,7 @@ def _label(found: CauseFigures, code: str) -> str:
 
 
 def _method(one: CauseNumber) -> Sentence:
-    return say.method(one.label, one.definition, one.source)
+    return cause_methods.method(one.label, one.definition, one.source)
 
 
 def _further(found: CauseFigures) -> tuple[Sentence, ...]:
