@@ -18,7 +18,8 @@ FIRST = 5  # places among which a cell is looked for
 DRAWS = 400
 ALIKE = "gaps if all areas were alike"  # purposes of streams
 RANKS = "ranks of gaps"
-SHARE = 0.25  # of the areas that are large enough: those that live longest are the benchmark
+SHARE = 1 / 3  # of the areas that are large enough: those that live longest are the benchmark
+ROUNDING = 1e-9
 
 Codes = NDArray[np.str_]
 
@@ -58,7 +59,7 @@ def chosen(value: Array, lived: Array, least: float, *, share: float = SHARE) ->
     array([False,  True, False, False])
     """
     fit = np.where((lived >= least) & np.isfinite(value), value, -np.inf)
-    wanted = np.ceil(share * np.isfinite(fit).sum(axis=-1, keepdims=True)).astype(int)
+    wanted = np.ceil(share * np.isfinite(fit).sum(axis=-1, keepdims=True) - ROUNDING).astype(int)
     ordered = -np.sort(-fit, axis=-1)
     edge = np.take_along_axis(ordered, np.maximum(wanted - 1, 0), axis=-1)
     return np.asarray((fit >= edge) & np.isfinite(fit))
@@ -161,6 +162,7 @@ class Alike:
 
     expected: Array  # [..., cause, age], the mean gain of a cell
     total: Array  # [...], of all cells together
+    total_most: Array  # [...], that all together stay below in 95 of 100
     largest: Array  # [...], that the largest of a population's cells stays below in 95 of 100
 
 
@@ -178,8 +180,9 @@ def alike(sides: Sides, rates: Array, slopes: Array, codes: Codes) -> Alike:
     )
     gains = _drawn(same, slopes, codes, ALIKE)
     cells = gains.reshape(*gains.shape[:-2], -1)
-    largest = np.quantile(cells.max(axis=-1), 0.95, axis=0)
-    return Alike(_mean(gains), _mean(cells.sum(axis=-1)), largest)
+    total = cells.sum(axis=-1)
+    most = (np.quantile(of, 0.95, axis=0) for of in (total, cells.max(axis=-1)))
+    return Alike(_mean(gains), _mean(total), *most)
 
 
 def among_first(sides: Sides, slopes: Array, codes: Codes, *, first: int = FIRST) -> Array:

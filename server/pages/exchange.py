@@ -198,7 +198,7 @@ def _charts(found: Exchange, source: str) -> tuple[Chart, ...]:
             at=at,
         )
 
-    upper = 1.7 * at_age(grid, np.append(there, np.nan), 56)
+    upper = max(low, 1.7 * at_age(grid, np.append(there, np.nan), 56))
     lower = at_age(grid, np.append(fewer, np.nan), 62) / 2.2
     chart = Chart(
         key="exchange",

@@ -13,7 +13,7 @@ from server.pages.page import Caution, Frame, Page
 from server.pages.statuses import marked, marks
 from server.pages.what_would_change import back
 from server.pages.withholding import caution, charts_given, tables_given
-from server.results.gaps import LEAST, Gaps, GapsQuestion, gaps_of
+from server.results.gaps import LEAST, Closed, Gaps, GapsQuestion, gaps_of
 from server.results.questions import PopulationYearQuestion, address
 from server.sentences import basis, breaks, care, names, sharing
 from server.sentences import gaps as say
@@ -77,8 +77,15 @@ def _answer(found: Gaps) -> Sentence:
         return say.no_answer(_who(found), found.period, known)
     named = tables.places(found)
     clear = [say.Gap(*named[at], tables.gain(found, at)) for at in tables.clear(found)]
-    total = float(closed.together.change["e0"].value)
-    return say.answer(_who(found), found.period, clear, total, float(closed.alike.total))
+    return say.answer(_who(found), found.period, clear, _together(closed))
+
+
+def _together(closed: Closed) -> say.Together:
+    return say.Together(
+        float(closed.together.change["e0"].value),
+        float(closed.alike.total),
+        float(closed.alike.total_most),
+    )
 
 
 def _lead(found: Gaps) -> tuple[Sentence, ...]:
@@ -99,11 +106,7 @@ def _lead(found: Gaps) -> tuple[Sentence, ...]:
         said.append(
             say.unevenness(*(1000 * float(one) for one in (uneven.value, uneven.low, uneven.high)))
         )
-        said.append(
-            say.all_together(
-                closed.together.change["e0"], float(closed.alike.total), float(closed.alike.largest)
-            )
-        )
+        said.append(say.all_together(_together(closed), float(closed.alike.largest)))
     return tuple(sentence for sentence in said if sentence)
 
 

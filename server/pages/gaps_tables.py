@@ -94,7 +94,7 @@ def _row(found: Gaps, at: int, place: tuple[str, str], gone: bool) -> Row:
     cause, age = np.unravel_index(at, closed.excess.shape)
     head: list[Cell] = [place[0], *([place[1]] if closed.causes else [])]
     if gone:
-        return Row((*head, *[withheld()] * 9, "", withheld()))
+        return Row((*head, *[withheld()] * 10, "", withheld()))
     with np.errstate(all="ignore"):
         own = RATE * closed.parts.deaths[cause, age] / closed.parts.exposure[cause, age]
     lent = RATE * closed.benchmark.rates[cause, age]

@@ -57,16 +57,16 @@ def rates(found: Findings, source: str) -> Chart | None:
         hover=_("age %{customdata}: %{y:.3g} per 1,000"),
         table="deaths",
         series=(
-            _line(found, later, who[1], "s1", "this"),
-            _line(found, now, who[0], "s2", "that"),
+            _line(found, later, who[1], "s1", "this", low),
+            _line(found, now, who[0], "s2", "that", low),
         ),
     )
 
 
-def _line(found: Findings, column: Array, label: str, role: str, weight: str) -> Series:
+def _line(found: Findings, column: Array, label: str, role: str, weight: str, low: float) -> Series:
     grid = tables.groups(found.grid)
     upper = weight == "that"
-    at = at_age(grid, np.append(column, np.nan), 50 if upper else 56)
+    at = max(low, at_age(grid, np.append(column, np.nan), 50 if upper else 56))
     place = At(48, 2.1 * at, "right", 0, narrow_x=52) if upper else At(60, at / 2.1, "left", 0)
     return Series(
         label,

@@ -45,18 +45,42 @@ def place(ages: str, cause: str) -> str:
     return _("ages {ages}, {cause}", ages=ages, cause=names.inside(cause))
 
 
-def answer(who: str, period: str, clear: Sequence[Gap], total: float, alike: float) -> Sentence:
+@dataclass(frozen=True, slots=True)
+class Together:
+    """All gaps at once, and what chance alone shows of them among areas that are alike, years."""
+
+    total: float
+    alike: float
+    most: float  # below which it stays in 95 of 100
+
+    @property
+    def clear(self) -> bool:
+        """Whether chance alone would hardly show so much."""
+        return self.total > self.most
+
+
+def answer(who: str, period: str, clear: Sequence[Gap], of: Together) -> Sentence:
     """The page's first line: where closing the gap adds most, if any gap is clear."""
     if not clear:
-        return phrase(
+        text = (
             _(
+                "No single gap between {who} in {year} and the benchmark is clear, but together"
+                " they are: closing all would add {total}, where chance alone shows {alike} among"
+                " areas that are alike, and seldom more than {most}."
+            )
+            if of.clear
+            else _(
                 "No gap between {who} in {year} and the benchmark is clear: closing all there are"
                 " would add {total}, where chance alone shows {alike} among areas that are alike."
-            ),
+            )
+        )
+        return phrase(
+            text,
             who=who,
             year=period,
-            total=years(total, 2),
-            alike=years(alike, 2),
+            total=years(of.total, 2),
+            alike=years(of.alike, 2),
+            most=years(of.most, 2),
         )
     first = clear[0]
     parts: dict[str, Piece | str] = {
@@ -112,9 +136,9 @@ def no_benchmark(least: str) -> str:
     )
 
 
-def all_together(total: Estimate, alike: float, largest: float) -> Sentence:
+def all_together(of: Together, largest: float) -> Sentence:
     """What closing every gap would add, beside what chance alone would show."""
-    if not math.isfinite(float(total.value)):
+    if not math.isfinite(of.total):
         return ()
     return phrase(
         _(
@@ -122,8 +146,8 @@ def all_together(total: Estimate, alike: float, largest: float) -> Sentence:
             " alone would show {alike}, and the largest single gap stays below {largest} in 95 of"
             " 100 cases."
         ),
-        total=years(float(total.value), 2),
-        alike=years(alike, 2),
+        total=years(of.total, 2),
+        alike=years(of.alike, 2),
         largest=days(largest),
     )
 
@@ -158,7 +182,7 @@ def benchmark(areas: Sequence[str], years_: Sequence[str], least: str, candidate
     return phrase(
         _(
             "The benchmark is {areas} in the same year: of {count} areas with at least {least}"
-            " person-years and ages as fine the quarter that lived longest in {years}, years other"
+            " person-years and ages as fine the third that lived longest in {years}, years other"
             " than this one, so that chance in the year itself had no part in the choice."
         ),
         areas=_("{areas} together", areas=names.listed(list(areas), most=8))

@@ -222,7 +222,7 @@ def test_the_benchmark_is_the_same_for_all_and_made_in_other_years(isle: Session
         ]
         members.append([row.cells[0] for row in rows])
     assert members == [members[0]] * len(AREAS)
-    assert len(members[0]) == 2  # a quarter of five, rounded up
+    assert len(members[0]) == 2  # a third of five, rounded up
     page = asked(isle, "gaps", "of=bay.m.2014")
     assert "in 2010 to 2013, years other than this one" in said(page)
 

@@ -130,13 +130,21 @@ def gap(value: float) -> gaps.Gap:
 
 
 def test_only_clear_gaps_are_named() -> None:
-    none = words(gaps.answer("men of Bay", "2014", [], 0.5, 0.4))
+    none = words(gaps.answer("men of Bay", "2014", [], gaps.Together(0.5, 0.4, 0.9)))
     assert none.startswith("No gap between men of Bay in 2014 and the benchmark is clear")
     assert "0.50 of a year" in none
     assert "0.40 of a year" in none
-    one = words(gaps.answer("men of Bay", "2014", [gap(0.1)], 0.5, 0.4))
+    assert "together they are" not in none
+    much = words(gaps.answer("men of Bay", "2014", [], gaps.Together(1.2, 0.4, 0.9)))
+    assert much.startswith(
+        "No single gap between men of Bay in 2014 and the benchmark is clear, but"
+    )
+    assert "seldom more than 0.90 of a year" in much
+    one = words(gaps.answer("men of Bay", "2014", [gap(0.1)], gaps.Together(0.5, 0.4, 0.9)))
     assert "at ages 45–49: 37 days of life expectancy (18 to 73). No other gap is clear." in one
-    more = words(gaps.answer("men of Bay", "2014", [gap(0.1), gap(0.05)], 0.5, 0.4))
+    more = words(
+        gaps.answer("men of Bay", "2014", [gap(0.1), gap(0.05)], gaps.Together(0.5, 0.4, 0.9))
+    )
     assert more.endswith("(18 to 73), then at ages 45–49 (18 days).")
 
 
