@@ -182,7 +182,7 @@ class _Edges:
 def _prices(of: Block) -> Array:
     """What is lost with a count, [slot, sex]: above all a count, more in sums and in areas with
     parts, on which more rests; among equals more for more deaths."""
-    price = 1.0 + 0.1 * np.log1p(np.where(of.held, of.values, 0.0))
+    price = 1.0 + 0.1 * np.log1p(np.maximum(np.nan_to_num(of.values), 0.0))
     price += 6.0 * (of.start == TOTAL)[:, None] + 12.0 * of.inner[:, None]
     price[:, 2] *= 1.5
     return np.asarray(price)

@@ -4,13 +4,15 @@ from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 
 from engine.ages import AgeGrid
+from server.disclosure.causes import Past, of_causes, past
 from server.disclosure.coarsening import coarsened
 from server.disclosure.history import State
 from server.disclosure.rounding import Rounding, on_coarser, rounding
 from server.disclosure.withholding import of_period
-from server.store.records import Area, Hidden, Key, Mask, Terms, Unprotected, Vector
+from server.store.records import Area, Cause, Hidden, Key, Mask, Terms, Unprotected, Vector
 
 Cells = Mapping[Key, Vector]
+Place = tuple[str, str]  # area and period
 
 
 @dataclass(frozen=True, slots=True)
@@ -22,6 +24,8 @@ class Content:
     mask: Mask
     unprotected: Mapping[str, Unprotected] = field(default_factory=dict)
     terms: Terms = field(default_factory=Terms)
+    causes: tuple[Cause, ...] = ()
+    by_cause: frozenset[Place] = frozenset()  # whose deaths by cause are shown
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,6 +34,7 @@ class Made:
 
     mask: Mask
     unprotected: Mapping[str, Unprotected]
+    by_cause: frozenset[Place] = frozenset()
 
 
 def mask(
@@ -40,11 +45,12 @@ def mask(
     otherwise: Sequence[Content] = (),
     *,
     secret: str = "",
+    causes: tuple[Cause, ...] = (),
 ) -> Made:
     """What is withheld of an edition of these areas and counts, when `earlier` editions of the
     collection were shown as they were. A year that is as in one of them is shown as there.
     `otherwise`: what other policies, the first one first, showed of the editions, which some reader
-    may have kept. `secret`: what counts are rounded with."""
+    may have kept. `secret`: what counts are rounded with. `causes`: the edition's list."""
     by_period, before = _periods(cells), [_periods(one.cells) for one in earlier]
     masks = [_hidden_periods(one.mask) for one in earlier]
     shown = _shown_otherwise(otherwise)
@@ -69,7 +75,57 @@ def mask(
             made = _withheld(areas, period, own, way, states, shown.get(period, ()))
         found |= made.mask
         left |= {period: made.unprotected} if made.unprotected != Unprotected() else {}
-    return Made(found, left)
+    content = Content(areas, cells, found, left, terms, causes)
+    return _with_causes(content, earlier, otherwise)
+
+
+def _with_causes(own: Content, earlier: Sequence[Content], otherwise: Sequence[Content]) -> Made:
+    """Of each area that is part of none, by year. Rounded counts have none by cause: these would
+    have to add up to them."""
+    found, left, shown = dict(own.mask), dict(own.unprotected), set()
+    before, beside = ([_Tables(one) for one in ones] for ones in (earlier, otherwise))
+    tables = _Tables(own) if own.terms.causes == "whole" else None
+    for place in tables.places if tables else ():
+        way = way_of(place[1], own.terms, otherwise)
+        now = tables.of(place, own.mask) if tables else None
+        if way.base or now is None:
+            continue
+        past, others = ([p for one in ones if (p := one.shown(place))] for ones in (before, beside))
+        made = of_causes(now, way, past, others)
+        found |= made.mask
+        shown.add(place)
+        rest = left.get(place[1], Unprotected())
+        also = made.unprotected
+        if also != Unprotected():
+            left[place[1]] = Unprotected(rest.exposed + also.exposed, rest.narrow + also.narrow)
+    return Made(found, left, frozenset(shown))
+
+
+class _Tables:
+    """Counts of the areas of an edition that are part of none and have deaths by cause."""
+
+    def __init__(self, content: Content) -> None:
+        self.content = content
+        tops = {area.code for area in content.areas if not area.parent}
+        grouped: dict[Place, dict[Key, Vector]] = {}
+        if any(key.cause for key in content.cells):
+            for key, vector in content.cells.items():
+                if key.area in tops:
+                    grouped.setdefault((key.area, key.period), {})[key] = vector
+        self.cells = {
+            place: cells for place, cells in grouped.items() if any(key.cause for key in cells)
+        }
+
+    @property
+    def places(self) -> list[Place]:
+        return sorted(self.cells)
+
+    def of(self, place: Place, mask: Mask) -> Past | None:
+        return past(self.content.causes, *place, self.cells.get(place, {}), mask)
+
+    def shown(self, place: Place) -> Past | None:
+        """The table, where it was shown."""
+        return self.of(place, self.content.mask) if place in self.content.by_cause else None
 
 
 def way_of(period: str, terms: Terms, otherwise: Iterable[Content]) -> Terms:
@@ -138,7 +194,8 @@ def _periods(cells: Cells) -> dict[str, dict[Key, Vector]]:
 def _hidden_periods(mask: Mask) -> dict[str, dict[Key, Hidden]]:
     found: dict[str, dict[Key, Hidden]] = {}
     for key, hidden in mask.items():
-        found.setdefault(key.period, {})[key] = hidden
+        if not key.cause:
+            found.setdefault(key.period, {})[key] = hidden
     return found
 
 

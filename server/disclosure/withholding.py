@@ -10,7 +10,7 @@ from server.disclosure.blocks import SEXES, TOTAL, Block, Bools, block
 from server.disclosure.closing import Closed, close
 from server.disclosure.equations import equations
 from server.disclosure.history import State, fresh_of, leaking, public_of, withheld_before
-from server.disclosure.standing_in import stand_ins
+from server.disclosure.standing_in import expected, stand_ins
 from server.store.records import Area, Hidden, Key, Terms, Unprotected, Vector
 
 Cells = Mapping[Key, Vector]
@@ -52,7 +52,8 @@ def of_period(
         exposed, narrow = exposed + max(len(done.exposed), left), narrow + len(done.narrow)
         if measure == "person_years":
             few = {key: done.hidden[slot] for key, slot in of.keys().items()}
-        stand = stand_ins(of, done.hidden, equations(of), max(threshold / 2, 1.0))
+        begin = expected(of, done.hidden, max(threshold / 2, 1.0))
+        stand = stand_ins(of, done.hidden, equations(of), begin=begin)
         found |= by_schedule(of, period, measure, done.hidden, stand)
     found |= _of_the_same_people(cells, found)
     return State(areas, cells, found, Unprotected(exposed, narrow))

@@ -10,10 +10,11 @@ from dataclasses import replace
 import numpy as np
 
 from engine.ages import AgeGrid
+from server.disclosure.showing import shown
 from server.store import masks, schedules
 from server.store.connect import Session
 from server.store.masks import Protected
-from server.store.records import Hidden, Key, Selection, Vector
+from server.store.records import Key, Selection, Vector
 
 Cells = dict[Key, Vector]
 FULL = "full"
@@ -30,30 +31,21 @@ def released(
 
 
 def masked(cells: Mapping[Key, Vector], protected: Protected | None) -> Cells:
-    """Schedules as they are shown under a mask. Deaths by cause are not shown under any."""
+    """Schedules as they are shown under a mask. Deaths by cause are shown of the areas and years
+    that the mask was made for; of a cause without any, nil is withheld where its number would
+    be."""
     if protected is None:
         return dict(cells)
-    hidden = protected.kept.mask
-    return {
+    hidden, by_cause = protected.kept.mask, protected.kept.by_cause
+    found = {
         key: shown(vector, hidden[key]) if key in hidden else vector
         for key, vector in cells.items()
-        if not key.cause
+        if not key.cause or (key.area, key.period) in by_cause
     }
-
-
-def shown(vector: Vector, hidden: Hidden) -> Vector:
-    """One schedule on the groups it is given by: rounded, or its withheld numbers stood in for."""
-    if hidden.rounded:
-        grid = AgeGrid(hidden.starts) if hidden.starts else vector.grid
-        return replace(vector, grid=grid, values=np.array(hidden.values), rounded=hidden.rounded)
-    grid, values = vector.grid, vector.values
-    if hidden.starts and hidden.starts != grid.starts:
-        coarser = AgeGrid(hidden.starts)
-        grid, values = coarser, grid.regroup(values, coarser)
-    values = np.array(values)
-    ages = []
-    for age, value in zip(hidden.ages, hidden.values, strict=True):
-        if age >= 0:
-            values[grid.position(age)] = value
-            ages.append(age)
-    return replace(vector, grid=grid, values=values, withheld=tuple(ages))
+    beside = {key[:4]: vector for key, vector in found.items() if key.cause}
+    for key, one in hidden.items() if beside else ():
+        if key.cause and key not in found and key[:4] in beside:
+            nil = np.zeros(len(one.starts))
+            empty = replace(beside[key[:4]], grid=AgeGrid(one.starts), values=nil, withheld=())
+            found[key] = shown(empty, one)
+    return found

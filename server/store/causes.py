@@ -53,6 +53,26 @@ def statement(collection: str, number: int) -> Select[str, str, str, str, str, s
     )
 
 
+def of_editions(
+    session: Session, collection: str, numbers: Iterable[int]
+) -> dict[int, tuple[Cause, ...]]:
+    """Codes, kinds and places of the causes of several editions, without labels. One statement."""
+    row = CauseRange
+    rows = session.execute(
+        select(row.code, row.parent, row.kind, row.first, row.until)
+        .where(row.collection_id == collections.id_of(collection))
+        .order_by(row.code)
+    ).all()
+    return {
+        number: tuple(
+            Cause(one.code, "", one.parent, kind=one.kind)
+            for one in rows
+            if one.first <= number and (one.until is None or one.until > number)
+        )
+        for number in numbers
+    }
+
+
 def in_tree_order(causes: Iterable[Cause]) -> tuple[Cause, ...]:
     """Each cause before its parts, siblings in the order given.
 

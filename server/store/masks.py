@@ -25,6 +25,7 @@ class Kept:
 
     mask: Mask
     unprotected: Lookup[str, Unprotected] = field(default_factory=dict)
+    by_cause: frozenset[tuple[str, str]] = frozenset()  # areas and periods shown by cause as well
 
     @property
     def exposed(self) -> int:
@@ -37,9 +38,7 @@ class Kept:
     @property
     def cells(self) -> int:
         """How many counts are withheld; sums over age are none of them."""
-        return sum(
-            age >= 0 for one in self.mask.values() if not one.rounded for age in one.ages
-        )
+        return sum(age >= 0 for one in self.mask.values() if not one.rounded for age in one.ages)
 
     @property
     def rounded(self) -> int:
@@ -196,7 +195,8 @@ def packed(kept: Kept) -> bytes:
         for key, one in sorted(kept.mask.items())
     ]
     left = {period: [one.exposed, one.narrow] for period, one in sorted(kept.unprotected.items())}
-    text = json.dumps({"unprotected": left, "hidden": rows})
+    shown = {"by_cause": sorted(kept.by_cause)} if kept.by_cause else {}
+    text = json.dumps({"unprotected": left, "hidden": rows} | shown)
     return zlib.compress(text.encode(), 6)
 
 
@@ -213,4 +213,6 @@ def unpacked(content: bytes) -> Kept:
         for row in stored["hidden"]
     }
     left = {period: Unprotected(*numbers) for period, numbers in stored["unprotected"].items()}
-    return Kept(mask, left)
+    return Kept(
+        mask, left, frozenset((area, period) for area, period in stored.get("by_cause", ()))
+    )

@@ -3,7 +3,7 @@
 import numpy as np
 
 from engine.ages import AgeGrid
-from server.store.records import Area, Key, Vector
+from server.store.records import Area, Cause, Key, Vector
 
 GRID = AgeGrid((0, 1, 5, 20, 40, 60, 80))
 _WIDTHS = np.array([1, 4, 15, 20, 20, 20, 10.0])
@@ -51,3 +51,53 @@ def add(cells: Cells, parents: dict[str, str], key: Key, values: np.ndarray) -> 
             before = cells[one].values if one in cells else 0.0
             cells[one] = Vector("final", GRID, before + values)
         area = parents[area]
+
+
+LIST = (
+    Cause("body", "Diseases", kind="natural"),
+    Cause("heart", "Heart", "body"),
+    Cause("lungs", "Lungs", "body"),
+    Cause("rare", "A disease that nobody had", "body"),
+    Cause("outside", "Accidents", kind="external"),
+    Cause("road", "Road traffic", "outside", kind="external"),
+    Cause("fall", "Falls", "outside", kind="external"),
+)
+_SHARES = {  # at each age group
+    "heart": (0.3, 0.1, 0.1, 0.2, 0.4, 0.6, 0.65),
+    "lungs": (0.4, 0.3, 0.1, 0.2, 0.4, 0.3, 0.25),
+    "road": (0.1, 0.4, 0.7, 0.4, 0.1, 0.03, 0.02),
+    "fall": (0.2, 0.2, 0.1, 0.2, 0.1, 0.07, 0.08),
+}
+
+
+def by_cause(cells: Cells, *, seed: int) -> Cells:
+    """The deaths of every area and sex parted over causes, and every sum of them. Nobody dies of
+    one of the list, which has no schedules."""
+    rng = np.random.default_rng(1000 + seed)
+    out = dict(cells)
+    parents = {area.code: area.parent for area in (*FLAT, *TREE)}
+    wholes = set(parents.values())
+    shares = np.array(list(_SHARES.values()))
+    for key, vector in cells.items():
+        if key.measure == "deaths" and key.sex != "p" and key.area not in wholes:
+            parted = np.array(
+                [rng.multinomial(int(n), p) for n, p in zip(vector.values, shares.T, strict=True)]
+            )
+            for at, cause in enumerate(_SHARES):
+                add(out, parents, key._replace(cause=cause), parted[:, at].astype(float))
+    return out
+
+
+def late(cells: Cells, areas: tuple[Area, ...], seed: int, only: str = "") -> Cells:
+    """Deaths reported late, each of a cause; `only` in one area."""
+    rng = np.random.default_rng(seed)
+    parents = {area.code: area.parent for area in areas}
+    leaves = [code for code in parents if code not in set(parents.values())]
+    out = dict(cells)
+    for code in leaves if not only else [only]:
+        for sex in "fm":
+            for cause in _SHARES:
+                more = rng.poisson(0.15, len(GRID)).astype(float)
+                for one in ("", cause):
+                    add(out, parents, Key(code, sex, "2001", "deaths", one), more)
+    return out

@@ -6,7 +6,7 @@ import pytest
 from engine.ages import AgeGrid
 from server.disclosure.coarsening import coarsened
 from server.disclosure.masking import mask
-from server.results.releasing import shown
+from server.disclosure.showing import shown
 from server.store.records import Area, Key, Terms, Vector
 from tests.server.disclosure.counts import Cells, add
 

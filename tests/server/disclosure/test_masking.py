@@ -11,7 +11,7 @@ from scipy.sparse import csr_array, vstack
 from server.disclosure.blocks import SEXES, Block, block
 from server.disclosure.equations import determined, equations
 from server.disclosure.masking import Content, Made, mask
-from server.results.releasing import shown
+from server.disclosure.showing import shown
 from server.store.records import Area, Key, Mask, Terms, Vector
 from tests.server.disclosure.counts import FLAT, GRID, TREE, add, drawn
 

@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 
 from server.disclosure.masking import Content, mask, way_of
 from server.disclosure.rounding import BASES, Rounding, rounded
-from server.results.releasing import shown
+from server.disclosure.showing import shown
 from server.store.records import Area, Key, Mask, Terms, Vector
 from tests.server.disclosure.counts import FLAT, GRID, NATION, TREE, add, drawn
 
