@@ -320,7 +320,7 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
 
 
 def _in_full(found: Findings) -> tuple[Sentence, ...]:
-    """Where counts are withheld: persons, who need it less, and three years added up."""
+    """Where counts are withheld: persons, who need it less, and three years added up; and why."""
     if not found.loaded.protected:
         return ()
     heading, of, asked = found.heading, found.of, found.question
@@ -335,7 +335,8 @@ def _in_full(found: Findings) -> tuple[Sentence, ...]:
         ways.append(link(names.population("p", found.name), persons, asked.settings))
     if found.settings.years == 1 and found.holdings.all_of(of, 3):
         ways.append(link(_("three years added up"), of, POOLED))
-    return withholding_say.ways(ways)
+    policy = f"/c/{heading.collection.code}/policy"
+    return withholding_say.ways(ways if found.loaded.withheld else [], policy)
 
 
 def _why(found: Findings) -> tuple[Sentence, ...]:

@@ -207,10 +207,16 @@ def _cautions(found: Series, moved_before: basis.Told) -> tuple[Caution, ...]:
         if not found.indicator.needs.whole
         and tables.widest(found.estimate, line) > abs(float(found.change.value[line]))
     ]
-    protected = [_who(found, line) for line, some in enumerate(found.protected) if any(some)]
+    withheld = [
+        _who(found, line)
+        for line, some in enumerate(zip(found.protected, found.rounded, strict=True))
+        if any(hidden and not base for hidden, base in zip(*some, strict=True))
+    ]
+    base = max(base for line in found.rounded for base in line)
     return frames.cautions(
         beside=[
-            withholding.behind(protected),
+            withholding.behind(withheld),
+            withholding.rounded(base) if base else None,
             basis.provisional(sorted(years)),
             moved_before,
             basis.estimated(

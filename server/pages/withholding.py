@@ -43,7 +43,7 @@ def protected(sides: Sequence[Loaded | None]) -> bool:
 
 
 def caution(*sides: Loaded | None) -> Told:
-    """What is withheld, and what that makes of the figures; None where nothing is."""
+    """What is withheld or rounded, and what that makes of the figures; None where nothing is."""
     known = [side for side in sides if side is not None]
     if not protected(known):
         return None
@@ -58,7 +58,11 @@ def caution(*sides: Loaded | None) -> Told:
         )
         if gone
     }
-    return say.withheld([label for _start, label in sorted(ages)])
+    base = max(side.rounded for side in known)
+    # what is protected and not rounded is withheld
+    only = any(side.protected and not side.rounded for side in known)
+    told = say.withheld([label for _start, label in sorted(ages)]) if ages or only else None
+    return say.rounded(base, told) if base else told
 
 
 def _to_print(table: Table) -> Table:

@@ -52,7 +52,8 @@ class Series:
     periods: tuple[str, ...]
     estimate: Estimate
     estimated: tuple[bool, ...]  # [line]: some year's counts were shared out or worked out
-    protected: tuple[tuple[bool, ...], ...]  # [line][period]: counts behind it are withheld
+    protected: tuple[tuple[bool, ...], ...]  # [line][period]: counts are withheld or rounded
+    rounded: tuple[tuple[int, ...], ...]  # [line][period]: to which base; 0: not
     shared_out: tuple[tuple[bool, ...], ...]  # [line][period]: its counts are estimates
     status: tuple[tuple[str, ...], ...]  # [line][period]: final, provisional; "" where not held
     open_ages: tuple[tuple[int | None, ...], ...]  # [line][period]: where the table ends
@@ -166,6 +167,7 @@ def series(
             for row in _rows(found, len(periods))
         ),
         protected=_rows([one is not None and one.protected for one in found], len(periods)),
+        rounded=_rows([one.rounded if one else 0 for one in found], len(periods)),
         shared_out=_rows([one is not None and one.estimated for one in found], len(periods)),
         status=_rows([one.status if one else "" for one in found], len(periods)),
         open_ages=_rows([one.panel.grid.open_age if one else None for one in found], len(periods)),

@@ -5,35 +5,32 @@ from collections.abc import Sequence
 from server.sentences.basis import in_a_row
 from server.sentences.names import listed
 from server.sentences.pieces import Piece, Sentence, phrase
-from server.sentences.text import _, n_
+from server.sentences.text import _
 
 Told = tuple[str, str] | None
-MOST = 8  # ages named
+MOST = 8  # populations named
+FEW = 2  # ages named
 
 
 def withheld(ages: Sequence[str]) -> Told:
     """A caution beside figures that rest on withheld counts."""
-    what = (
-        n_(
-            "The deaths at {ages} are withheld: so few that a person might be recognised, or needed"
-            " to keep such a number from being worked out.",
-            "The deaths at {ages} are withheld: so few that a person might be recognised, or needed"
-            " to keep such numbers from being worked out.",
-            len(ages),
-            ages=listed(ages, most=MOST),
-        )
-        if ages
-        else _("Some of the counts behind these figures are withheld, since they are very small.")
+    if not ages:
+        what = _("Some counts behind these figures are withheld")
+    elif len(ages) <= FEW:
+        what = _("The deaths at {ages} are withheld", ages=listed(ages))
+    else:
+        what = _("The deaths at {count} ages are withheld", count=len(ages))
+    return _("Withheld"), _("{what}; estimates stand in for them.", what=what)
+
+
+def rounded(base: int, also: Told = None) -> Told:
+    """A caution beside figures that rest on rounded counts; `also` withheld ones."""
+    said = _(
+        "Counts are rounded at random, up or down, to multiples of {base}, and all figures are"
+        " worked out from these.",
+        base=base,
     )
-    return (
-        _("Withheld"),
-        what
-        + " "
-        + _(
-            "Estimates from what is shown stand in for them, so the figures here may be a little"
-            " off, and no further decimals of them are given."
-        ),
-    )
+    return _("Rounded"), f"{said} {also[1]}" if also else said
 
 
 def behind(who: Sequence[str]) -> Told:
@@ -41,15 +38,13 @@ def behind(who: Sequence[str]) -> Told:
     if not who:
         return None
     return _("Withheld"), _(
-        "Some counts behind the figures of {who} are withheld, since they are very small."
-        " Estimates from what is shown stand in for them, so these figures may be a little off,"
-        " and no further decimals of them are given.",
+        "Some counts behind {who} are withheld; estimates stand in for them.",
         who=listed(who, most=MOST),
     )
 
 
-def ways(links: Sequence[Piece]) -> tuple[Sentence, ...]:
-    """Where fewer counts are withheld; nothing where there are no such places."""
-    if not links:
-        return ()
-    return ((*phrase(_("With less withheld: ")), *in_a_row(links), Piece(".")),)
+def ways(links: Sequence[Piece], policy: str) -> tuple[Sentence, ...]:
+    """Where fewer counts are withheld, and the page that says what is and why."""
+    why = phrase("{link}.", link=Piece(_("What of small counts is shown, and why"), policy))
+    less = (*phrase(_("With less withheld: ")), *in_a_row(links), Piece("."))
+    return (less, why) if links else (why,)
