@@ -194,6 +194,8 @@ def test_persons_are_spread_within_each_sex() -> None:
         assert found is not None
         expected = sum(one.counts.deaths for one in by_sex if one)
         assert_allclose(found.counts.deaths, expected)
+    plain = {key: cell for key, cell in persons.items() if not key.cause}
+    assert of(held | plain, "a.p.2004", choice).causes is None
     alone = of(persons, "a.p.2004", choice).causes
     assert alone is not None
     natural, vague = np.isin(LEAVES, ("heart", "lungs")), np.isin(LEAVES, ("signs", "open"))
