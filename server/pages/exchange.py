@@ -127,7 +127,10 @@ def _ages(found: Exchange) -> Table:
     rows = []
     for at, label in enumerate(grid.labels):
         cells: list[Cell] = [number(float(of.deaths[at]), out_of_reach()), count(of.there[at])]
-        cells += [count(float(by_cause[cause, at])) for cause in range(len(causes))]
+        cells += [
+            withheld() if found.hidden[cause, at] else count(float(by_cause[cause, at]))
+            for cause in range(len(causes))
+        ]
         rows.append(Row((label, *([withheld()] * len(cells) if found.withheld[at] else cells))))
     short = any(isinstance(cell, Gap) and cell.reason for row in rows for cell in row.cells[1:2])
     note = _("Deaths of all ages and causes as they were, but for those fewer at one age.")

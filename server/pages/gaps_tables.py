@@ -34,19 +34,11 @@ def _closed(found: Gaps) -> Closed:
     return found.closed
 
 
-def hidden(found: Gaps) -> NDArray[np.bool_]:
-    """Cells whose deaths are withheld, here or in the benchmark."""
-    closed = _closed(found)
-    grid = closed.panel.grid
-    gone = np.any([side.withheld_on(grid) for side in found.protected], axis=0)
-    return np.broadcast_to(gone, closed.excess.shape).ravel()
-
-
 def order(found: Gaps) -> list[int]:
-    """Cells with a gap, the largest gain first; those withheld last, in their own order."""
+    """Cells with a gap that is not withheld, the largest gain first."""
     closed = _closed(found)
     gain = np.nan_to_num(closed.numbers.change["e0"].value)
-    gone = hidden(found)
+    gone = closed.hidden.ravel()
     return [at for at in np.argsort(-gain, kind="stable").tolist() if gain[at] > 0 and not gone[at]]
 
 
@@ -63,7 +55,7 @@ def gain(found: Gaps, at: int) -> Estimate:
 def cells(found: Gaps) -> Table:
     """Every gap, the largest gain first, and then the cells without one."""
     closed = _closed(found)
-    by_cause, gone = bool(closed.causes), hidden(found)
+    by_cause, gone = bool(closed.causes), closed.hidden.ravel()
     first = order(found)
     rest = [at for at in range(closed.excess.size) if at not in set(first)]
     named = places(found)
@@ -177,7 +169,7 @@ def chart(found: Gaps, source: str) -> Chart | None:
     ]
     return Chart(
         key="gaps",
-        finding=say.finding(int(flags.sum())),
+        finding=say.finding(len(clear(found))),
         unit=_(
             "Days of life expectancy gained with the benchmark’s death rate there alone; grey: not"
             " clear; dots alone: what chance shows on average if all areas are alike"

@@ -92,6 +92,8 @@ def fewer(found: Findings, source: str) -> Chart | None:
     mids = np.array(grid.starts, float) + widths / 2
     shown = np.where(found.withheld_on(grid), np.nan, by_group if total > 0 else -by_group)
     low, high = float(np.nanmin([0.0, *shown])), float(np.nanmax([0.0, *shown]))
+    if high - low < 0.05:  # all that changes is withheld
+        return None
     room = 0.06 * (high - low)
     on_scale = ticks(low, high)
     where, share = _most(found, np.nan_to_num(shown))

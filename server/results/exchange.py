@@ -17,7 +17,7 @@ from server.results.causes import CauseChoice
 from server.results.holdings import Holdings, holdings
 from server.results.keys import PopulationYear
 from server.results.loading import Beside, Found, Loaded, load
-from server.results.parted import Parted, parted
+from server.results.parted import Parted, hidden, parted
 from server.results.revision import Moved, moved
 from server.results.with_causes import CausesOfOne
 from server.sentences import names
@@ -71,6 +71,11 @@ class Exchange:
     def withheld(self) -> NDArray[np.bool_]:
         """Groups whose deaths are withheld, [age]."""
         return self.loaded.withheld_on(self.own.panel.grid)
+
+    @property
+    def hidden(self) -> NDArray[np.bool_]:
+        """The same of each cause, [cause, age]."""
+        return hidden(self.loaded, self.own.panel.grid, causes=bool(self.own.causes))
 
 
 def exchange(session: Session, heading: Heading, question: ExchangeQuestion) -> Exchange:

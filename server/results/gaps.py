@@ -23,7 +23,7 @@ from server.results.causes import CauseChoice
 from server.results.holdings import Holdings, holdings
 from server.results.keys import CAUSE_KEYS, Items, Keys, PopulationYear
 from server.results.loading import Beside, Found, Loaded, load
-from server.results.parted import have_causes, parts_of
+from server.results.parted import have_causes, hidden, parts_of
 from server.results.revision import Moved, moved
 from server.results.with_causes import CausesOfOne
 from server.sentences import names
@@ -75,6 +75,7 @@ class Closed:
     first: Array  # [cause, age], chance of being among the first five
     alike: gaps.Alike
     compared: int  # areas whose cells are judged together
+    hidden: NDArray[np.bool_]  # [cause, age], where deaths here or of the benchmark are withheld
 
 
 @dataclass(frozen=True, slots=True)
@@ -218,6 +219,7 @@ def _closed(
         gaps.among_first(own, slopes, codes),
         gaps.alike(own, rates, slopes, codes),
         len(everyone),
+        np.any([hidden(found[one], grid, causes=causes) for one in (of, *members)], axis=0),
     )
 
 

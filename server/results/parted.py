@@ -5,6 +5,7 @@ from dataclasses import dataclass, replace
 from functools import reduce
 
 import numpy as np
+from numpy.typing import NDArray
 
 from engine.ages import AgeGrid
 from engine.panel import Panel
@@ -86,6 +87,18 @@ def parts_of(loaded: Loaded, grid: AgeGrid, *, causes: bool) -> Parts:
     if not causes or loaded.causes is None:
         return Parts.of(panel)
     return Parts.of(panel, loaded.causes.counts.regroup(own, grid))
+
+
+def hidden(loaded: Loaded, grid: AgeGrid, *, causes: bool) -> NDArray[np.bool_]:
+    """Cells of one population, [cause, age], whose deaths only stand in for withheld ones."""
+    of_ages = loaded.withheld_on(grid)[None]
+    if not causes or loaded.causes is None:
+        return of_ages
+    own = loaded.causes.withheld
+    if own is None:
+        return np.broadcast_to(of_ages, (len(loaded.causes.list), len(grid)))
+    starts = [loaded.panel.grid.position(start) for start in grid.starts]
+    return np.asarray(np.logical_or.reduceat(own, starts, axis=-1) | of_ages)
 
 
 def have_causes(found: Found, of: Sequence[PopulationYear]) -> bool:

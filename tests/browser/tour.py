@@ -46,6 +46,15 @@ READ = {
     "population-year-withheld": "/c/quillmere/3/population-year"
     "?of=little-auk.f.2021&figures=released&settings=almanac-1",
     "policy": "/c/quillmere/policy",
+    "what-if": "/c/quillmere/2/what-if?at=tollbay.m.2017&of=e0"
+    f"&by=-20&from=30&to=59&sex=p&cause=&target=78{_CHOICES}",
+    "what-if-benchmark": "/c/quillmere/2/what-if?at=tollbay.p.2017&of=H"
+    "&by=-20&from=30&to=59&sex=m&cause=&by=10&from=0&to=4&sex=f&cause="
+    f"&toward=northlade.p.2017&toward_from=60&toward_to=79&toward_cause={_CHOICES}",
+    "what-if-nothing": f"/c/quillmere/2/what-if?at=little-auk.f.2020&of=e0{_CHOICES}",
+    "gaps": f"/c/quillmere/2/gaps?of=tollbay.m.2017&least=100000{_CHOICES}",
+    "gaps-withheld": f"/c/quillmere/3/gaps?of=little-auk.f.2021&least=100000{_CHOICES}",
+    "exchange": f"/c/quillmere/2/exchange?of=tollbay.m.2017{_CHOICES}",
     "methods": "/methods",
     "checks": "/checks",
     "words": "/words",

@@ -88,6 +88,7 @@ def test_every_kind_of_page_was_reached(pages: dict[str, Response]) -> None:
     refused = {address for address, answer in pages.items() if answer.status_code >= 400}
     assert refused == {"/nothing-here"}
     views = ("contents", "population-year", "curves", "comparison", "trend")
+    views += ("what-if", "gaps", "exchange")
     for view in views:
         for twin in ("", ".csv", ".xlsx", ".json"):
             found = [one for one in pages if re.match(rf"/c/quillmere/\d/{view}{twin}($|\?)", one)]

@@ -10,6 +10,8 @@ from numpy.testing import assert_allclose
 
 from engine.ages import AgeGrid
 from engine.indicators import INDICATORS
+from server.accounts.viewer import LOCAL
+from server.actions.set_policy import set_policy
 from server.exports.status import PROVISIONAL
 from server.exports.table import Gap, GapKind, Table
 from server.pages import exchange, gaps, what_if
@@ -26,7 +28,8 @@ from server.sentences.pieces import plain
 from server.store.connect import Session, make_engine, sessions
 from server.store.heading import heading
 from server.store.migrating import migrate
-from tests.factories import GRIDS, edition, gompertz_panel
+from server.store.records import Terms
+from tests.factories import GRIDS, NOON, edition, gompertz_panel
 from tests.server.results.test_what_if import LIST, dealt
 
 FIVE = GRIDS["abridged"]
@@ -272,3 +275,60 @@ def test_gaps_without_a_number_are_undefined_and_say_why(isle: Session) -> None:
     assert isinstance(row["change"], Gap)
     assert row["change"].kind is GapKind.UNDEFINED
     assert row["change"].reason
+
+
+@pytest.fixture(scope="module")
+def guarded(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Session]:
+    """Areas of which one is small, and a policy that withholds counts below three."""
+    url = f"sqlite:///{tmp_path_factory.mktemp('guarded') / 'ebbline.db'}"
+    migrate(url)
+    engine = make_engine(url)
+    sizes = {"north": 6e5, "south": 6e5, "bay": 8e3}
+    panels = {
+        f"{area}.{sex}.{year}": gompertz_panel(sex=sex, people=people, seed=100 * place + year)
+        for place, (area, people) in enumerate(sizes.items())
+        for sex in "fm"
+        for year in (2013, 2014)
+    }
+    panels |= {name: one.regroup(SHORT) for name, one in panels.items() if name[:3] == "bay"}
+    by_cause = {name: dealt(panel, at) for at, (name, panel) in enumerate(panels.items())}
+    with sessions(engine)() as session:
+        parents = dict.fromkeys(sizes, "isle")
+        edition(session, panels, parents=parents, causes=LIST, by_cause=by_cause)
+        terms = Terms(threshold=3)
+        set_policy(session, collection="isle", terms=terms, note="Few.", by=LOCAL, now=NOON)
+        yield session
+    engine.dispose()
+
+
+@pytest.mark.parametrize(
+    ("view", "query"),
+    [
+        ("what-if", "at=bay.m.2014&by=-20&from=40&to=59&target=77"),
+        ("what-if", "at=bay.m.2014&toward=north.m.2014"),
+        ("gaps", "of=bay.m.2014&least=20000"),
+        ("exchange", "of=bay.m.2014"),
+        ("exchange", "of=isle.m.2014"),
+    ],
+)
+def test_under_a_policy_withheld_counts_are_nowhere(
+    guarded: Session, view: str, query: str
+) -> None:
+    page = asked(guarded, view, query)
+    full = asked(guarded, view, query + "&figures=full")
+    marked = {
+        (table.key, at, key.key)
+        for table in page.tables
+        for at, row in enumerate(table.rows)
+        for key, cell in zip(table.columns, row.cells, strict=True)
+        if isinstance(cell, Gap) and cell.kind is GapKind.WITHHELD
+    }
+    assert marked, "something is withheld here"
+    assert any(caution.word == "Withheld" for caution in page.cautions)
+    assert not any(caution.word == "Withheld" for caution in full.cautions)
+    for table in page.tables:
+        for row in table.rows:
+            for head, cell in zip(table.columns, row.cells, strict=True):
+                decimals = head.decimals if row.decimals is None else row.decimals
+                if isinstance(cell, float) and decimals is not None:
+                    assert cell == round(cell, decimals), (table.key, head.key)
