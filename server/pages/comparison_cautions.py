@@ -9,6 +9,7 @@ from server.pages import comparison_tables as tables
 from server.pages import frames, provisional
 from server.pages.page import Caution
 from server.pages.withholding import caution
+from server.results.breaks import between
 from server.results.compared import Comparison, Side
 from server.results.overturning import overturned
 from server.results.provisional import track
@@ -66,6 +67,7 @@ def _of_method(found: Comparison) -> list[basis.Told]:
         ),
         basis.early_end(found.grid.open_age) if found.this.early_end else None,
         basis.smoothed(found.settings),
+        *_recoded(found),
         beside_say.two_collections() if found.kind == "elsewhere" else None,
         beside_say.no_rest() if found.no_rest else None,
     ]
@@ -140,6 +142,28 @@ def _break_between(found: Comparison) -> basis.Told:
         found.holdings.parted(first, last, found.this.of.area, found.that.of.area),
         *sorted((both.that.period, both.this.period)),
     )
+
+
+def _recoded(found: Comparison) -> list[basis.Told]:
+    """Breaks of the coding of causes between the years of two sides in one edition."""
+    of = found.explained.causes
+    if of is None or found.same or found.kind not in ("plain", "rest"):
+        return []
+    labels = {one.code: _(one.label or one.code) for one in found.holdings.causes}
+    areas = {"", found.this.of.area, found.that.of.area}
+    own = [one for one in found.holdings.breaks if one.cause and one.area in areas]
+    applied = {(one.period, one.cause) for one in of.ratios}
+    years: dict[str, list[str]] = {}
+    for one in between(own, found.this.of.period, found.that.of.period):
+        years.setdefault(one.period, []).append(one.cause)
+    return [
+        causes_say.recoded(
+            year,
+            list(dict.fromkeys(labels.get(cause, cause) for cause in causes)),
+            applied=all((year, cause) in applied for cause in causes),
+        )
+        for year, causes in sorted(years.items())
+    ]
 
 
 def _whole(side: Side) -> str:

@@ -13,7 +13,7 @@ from server.pages.cells import columns, number, withheld
 from server.pages.comparison_charts import asked, axis
 from server.pages.comparison_contributions import whole_group_withheld
 from server.pages.comparison_tables import RADIX, pair
-from server.pages.drawing import at_age, places, values
+from server.pages.drawing import places, values
 from server.results.compared import Comparison, Side
 from server.sentences import ages_at_death as say
 from server.sentences.numbers import number as text
@@ -82,10 +82,6 @@ def _line(found: Comparison, side: Side, density: Array, weight: str, role: str)
     both = pair(found)
     label = both.short(both.this if side is found.this else both.that)
     groups = found.groups
-    age = 55.0 if side is found.this else 65.0
-    height = at_age(groups, density, age)
-    top = float(np.nanmax(density))
-    at = At(age - 2, height + (0.22 if side is found.this else 0.06) * top, "right")
     return Series(
         label,
         places(groups.mids[:-1]),
@@ -94,8 +90,22 @@ def _line(found: Comparison, side: Side, density: Array, weight: str, role: str)
         role=role,
         weight=weight,  # type: ignore[arg-type]
         names=groups.labels[:-1],
-        at=at,
+        at=_label(found, side, density),
     )
+
+
+def _label(found: Comparison, side: Side, density: Array) -> At:
+    """The later deaths are named to the right of where they fall, the earlier ones to the left of
+    where they rise; on the phone the former at the upper left."""
+    other = found.that if side is found.this else found.this
+    ages, top = [side.table.ex[0], other.table.ex[0]], float(np.nanmax(density))
+    mids, peak = found.groups.mids[:-1], int(np.nanargmax(density))
+    half = np.nan_to_num(density) >= 0.5 * top
+    if ages[0] > ages[1] or (ages[0] == ages[1] and side is found.this):
+        last = int(np.flatnonzero(half)[-1])
+        return At(float(mids[last]), 0.55 * top, "left", 8, narrow_x=2, narrow_y=0.8 * top)
+    first = int(np.flatnonzero(half[: peak + 1])[0])
+    return At(float(mids[first]), 0.55 * top, "right", -8)
 
 
 def _marks(found: Comparison) -> Iterable[Mark]:

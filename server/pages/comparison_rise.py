@@ -3,6 +3,7 @@
 from collections.abc import Iterable
 
 import numpy as np
+from numpy.typing import NDArray
 
 from server.charts.chart import At, Chart, Series
 from server.charts.scales import ticks
@@ -15,12 +16,13 @@ from server.results.compared import Comparison, Side
 from server.sentences import ages_at_death as say
 from server.sentences.text import _
 
+SOUND_FROM = 40  # from which a printed table's steps are drawn
 APART = 0.9  # years by which two dots at one age stand apart
 
 
 def rise(found: Comparison, source: str) -> Chart | None:
     sides = (found.this, found.that)
-    if not all(np.isfinite(side.rises.value).any() for side in sides):
+    if not all(_drawn(side).any() for side in sides):
         return None
     both, (first, last) = pair(found), found.settings.ageing_span
     drawn = [
@@ -29,9 +31,7 @@ def rise(found: Comparison, source: str) -> Chart | None:
         *_slopes(found),
     ]
     ends = [
-        100 * part[np.isfinite(part)]
-        for side in sides
-        for part in (side.rises.low, side.rises.high)
+        100 * part[_drawn(side)] for side in sides for part in (side.rises.low, side.rises.high)
     ]
     lowest, highest = (float(f(np.concatenate(ends))) for f in (np.min, np.max))
     floor, ceiling = min(0.0, 1.05 * lowest), 1.08 * max(highest, 1.0)
@@ -40,9 +40,11 @@ def rise(found: Comparison, source: str) -> Chart | None:
         finding=say.rise(asked(found, "ageing_rate"), both, (first, last)),
         unit=_(
             "Rise of death rates from one five-year age group to the next, at the age that parts"
-            " them (a hundred times the change of the logarithm), with {level} % intervals; drawn"
-            " where both have 100 deaths",
+            " them (a hundred times the change of the logarithm), with {level} % intervals, drawn"
+            " where both have 100 deaths; lines: the slope from {first} to {last}",
             level=round(100 * found.settings.level),
+            first=first,
+            last=last,
         ),
         source=source,
         described=_(
@@ -63,6 +65,13 @@ def rise(found: Comparison, source: str) -> Chart | None:
     )
 
 
+def _drawn(side: Side) -> NDArray[np.bool_]:
+    """The steps that are drawn; of a printed table those above the ages at which its rounding
+    alone makes them jump."""
+    known = np.isfinite(side.rises.value)
+    return known & (side.rises.at >= SOUND_FROM) if side.place.standard else known
+
+
 def _slopes(found: Comparison) -> Iterable[Series]:
     """Of both sides over the settings’ ages, the higher one named above its line."""
     both, (first, last) = pair(found), found.settings.ageing_span
@@ -71,19 +80,25 @@ def _slopes(found: Comparison) -> Iterable[Series]:
         if np.isfinite(levels[at]):
             above = levels[at] > levels[1 - at] or (at == 0 and levels[0] == levels[1])
             yield Series(
-                _("slope, {who}", who=both.short(of)),
+                both.short(of),
                 (float(first), float(last)),
                 (levels[at], levels[at]),
                 sex=side.sex,  # type: ignore[arg-type]
                 role=("s1", "s2")[at],
                 weight=("this", "that")[at],
-                at=At(float(first) - 1, levels[at], "right", 0, 9 if above else -9),
+                at=At(
+                    float(first) - 1,
+                    levels[at],
+                    "right",
+                    dy=9 if above else -9,
+                    narrow_x=float(first) + 12,
+                ),
             )
 
 
 def _dots(side: Side, label: str, aside: float, role: str) -> Iterable[Series]:
     k = side.rises
-    known = np.isfinite(k.value)
+    known = _drawn(side)
     yield Series(
         label,
         places(k.at[known] + aside),

@@ -16,6 +16,8 @@ def spread(of: Answer, pair: Pair) -> str:
     parts = {"here": _value(of, this=True), "there": _value(of, this=False)}
     if not all(parts.values()):
         return _("Deaths by age on the two sides")
+    if of.exact:
+        return _("A death cost {here} years of further life on average, against {there}", **parts)
     if not of.clear:
         return _(
             "How far ages at death lie apart did not clearly differ: a death cost {here} years of"
@@ -144,16 +146,16 @@ def rise(of: Answer, pair: Pair, span: tuple[int, int]) -> str:
     }
     if of.kind is Movement.UNKNOWN:
         return _("Rise of death rates with age on the two sides")
-    if not of.clear:
-        return _(
-            "From {first} to {last} the rise of death rates with age did not clearly differ:"
-            " {here} against {there} % with each year",
-            **parts,
-        )
     if pair.revised:
         return _(
             "From {first} to {last} death rates rise by {here} % with each year of age, against"
             " {there} in the other edition",
+            **parts,
+        )
+    if not of.clear:
+        return _(
+            "From {first} to {last} the rise of death rates with age did not clearly differ:"
+            " {here} against {there} % with each year",
             **parts,
         )
     steeper = of.kind in HIGHER

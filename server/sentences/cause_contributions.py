@@ -99,6 +99,22 @@ def differ() -> tuple[str, str]:
     )
 
 
+def recoded(year: str, causes: Sequence[str], *, applied: bool) -> tuple[str, str]:
+    """That the coding of some causes changed between the two years."""
+    parts = {"year": year, "causes": names.listed([names.inside(one) for one in causes], most=6)}
+    if applied:
+        return _("Coding"), _(
+            "The coding of causes changed in {year} ({causes}). Deaths of earlier years are brought"
+            " to the newer coding by comparability ratios.",
+            **parts,
+        )
+    return _("Coding"), _(
+        "The coding of causes changed in {year} ({causes}): what these causes add holds the change"
+        " of coding too. Applying the comparability ratios takes it out where there are such.",
+        **parts,
+    )
+
+
 def treated(*, spread: bool, undetermined: bool, applied: int) -> Sentence:
     """What was done to the deaths by cause before they were compared."""
     said: list[str] = []

@@ -35,19 +35,23 @@ class Named:
     table: str = ""  # a printed life table, which stands in the place of people
 
     @property
+    def _table(self) -> str:
+        return _("the {table}", table=self.table) if self.table else ""
+
+    @property
     def who(self) -> str:
         """Inside a sentence, without the year."""
-        return self.table or names.population(self.sex, self.area)
+        return self._table or names.population(self.sex, self.area)
 
     @property
     def at_head(self) -> str:
-        return names.first_capital(self.table) or names.population_first(self.sex, self.area)
+        return names.first_capital(self._table) or names.population_first(self.sex, self.area)
 
     @property
     def whole(self) -> str:
         """Inside a sentence, with the year: men of Northlade in 2014."""
         if self.table:
-            return self.table
+            return self._table
         dated = _("{who} in {year}", who=self.who, year=self.period)
         if not self.edition:
             return dated
@@ -241,7 +245,7 @@ def _life_expectancy(pair: Pair, of: Answer, parts: dict[str, Piece | str]) -> S
     if pair.that.table:
         return phrase(
             _(
-                "{this} in {year} could expect {amount} of life than the {that} gives {interval}:"
+                "{this} in {year} could expect {amount} of life than {that} gives {interval}:"
                 " {here} against {there}."
             ),
             year=pair.this.period,
@@ -308,12 +312,12 @@ def evenness(pair: Pair, of: Answer) -> Sentence:
     if pair.that.table:
         text = (
             _(
-                "Length of life was less even among {this} than in the {that}: relative unevenness"
+                "Length of life was less even among {this} than in {that}: relative unevenness"
                 " {here} against {there}."
             )
             if of.kind in HIGHER
             else _(
-                "Length of life was more even among {this} than in the {that}: relative unevenness"
+                "Length of life was more even among {this} than in {that}: relative unevenness"
                 " {here} against {there}."
             )
         )
