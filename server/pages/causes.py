@@ -1,11 +1,12 @@
 """Of what do people die here? One area, sex and year, by cause of death."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import ClassVar
 
 import numpy as np
 
 from engine.causes.number import CauseNumber
+from engine.estimates import Reason
 from engine.indicators import INDICATORS
 from server.charts.chart import Chart
 from server.exports.table import Table
@@ -30,12 +31,14 @@ from server.results.questions import (
 from server.sentences import basis, care, cause_methods, names, sharing
 from server.sentences import causes as say
 from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.reasons import reason
 from server.sentences.standing import Headline
 from server.sentences.text import _
 from server.store.connect import Session
 from server.store.heading import Heading
 
 TOLD = 3  # causes named in the answer
+LAW = "almanac-1-kannisto"  # what to ask for where the open group is too large
 
 
 @dataclass(frozen=True, slots=True)
@@ -151,10 +154,19 @@ def _lead(found: CauseFigures) -> tuple[Sentence, ...]:
                 float(found.panel.deaths.sum()),
             )
         )
+    elif int(found.all["edagger"].reason) == Reason.OPEN_GROUP_TOO_LARGE:
+        said.append(_not_read(found))
     gained = found.estimates["gain"][first]
     if np.isfinite(gained.value):
         said.append(say.gain(cause_choices.name(found.causes[first]), gained, tables.years(found)))
     return tuple(said)
+
+
+def _not_read(found: CauseFigures) -> Sentence:
+    """That the ages end too early, and the settings that help."""
+    place = (found.heading.collection.code, found.heading.edition.number)
+    law = Piece(LAW, address(*place, replace(found.question, settings=LAW)))
+    return say.not_read(reason(int(found.all["edagger"].reason), found.settings), law)
 
 
 def _avoidable(found: CauseFigures) -> Sentence:

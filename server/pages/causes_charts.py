@@ -1,5 +1,7 @@
 """Pictures of a page of causes: what each costs, at which ages, and one of them by year."""
 
+from typing import Literal
+
 import numpy as np
 
 from engine.ages import AgeGrid, Array
@@ -17,6 +19,7 @@ from server.sentences.text import _
 
 NAMED = 4  # causes drawn in colours of their own
 SHOWN = 18  # rows at most
+FARTHEST = 76.0  # age beyond which a name has no room on the phone
 
 
 def ranked(found: CauseFigures, source: str) -> Chart | None:
@@ -50,7 +53,7 @@ def ranked(found: CauseFigures, source: str) -> Chart | None:
             count=len(shown),
             unit=unit,
         ),
-        size="low" if len(shown) <= 8 else "std" if len(shown) <= 14 else "tall",
+        size=_size(len(shown)),
         x_kind="amount",
         x_range=(0.0, most),
         x_ticks=ticks(0.0, most),
@@ -73,6 +76,11 @@ def ranked(found: CauseFigures, source: str) -> Chart | None:
             ),
         ),
     )
+
+
+def _size(rows: int) -> Literal["low", "std", "tall", "rows"]:
+    """So high that the names of so many rows have room in print too."""
+    return "low" if rows <= 5 else "std" if rows <= 7 else "tall" if rows <= 9 else "rows"
 
 
 def by_age(found: CauseFigures, source: str) -> Chart | None:
@@ -162,8 +170,11 @@ def _above(named: Array, place: int) -> Array:
 
 
 def _apart(named: Array, place: int) -> int:
-    """The age at which a line lies highest above the others that are named."""
-    return int(np.argmax(_above(named, place)))
+    """The age at which a line is named: its highest peak above the others that are named, or where
+    it lies highest above them."""
+    own, above = np.pad(named[place], 1), _above(named, place)
+    peaks = (own[1:-1] > own[:-2]) & (own[1:-1] >= own[2:]) & (above > 0)
+    return int(np.argmax(np.where(peaks, named[place], -1.0) if peaks.any() else above))
 
 
 def _beside(mids: Array, density: Array, at: int) -> At:
@@ -172,7 +183,7 @@ def _beside(mids: Array, density: Array, at: int) -> At:
     before = density[at - 1] if at else 0.0
     after = density[at + 1] if at + 1 < len(density) else 0.0
     if before < y >= after:
-        return At(x, y, "center", dy=12)
+        return At(x, y, "center", dy=12, narrow_x=min(x, FARTHEST), narrow_y=y)
     return At(x, y, "right", dx=-8, dy=4) if after > y else At(x, y, "left", dx=8, dy=4)
 
 

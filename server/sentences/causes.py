@@ -87,6 +87,18 @@ def meaning(e0: Estimate) -> Sentence:
     )
 
 
+def not_read(why: str, law: Piece) -> Sentence:
+    """Why years lost per death are not known, and with which settings a law spreads them."""
+    return phrase(
+        _(
+            "Years lost per death are not given: {why} With the settings {law} a law fitted to the"
+            " ages below spreads the deaths of the highest ages."
+        ),
+        why=why,
+        law=law,
+    )
+
+
 def most_deaths(name: str, share: Estimate, deaths: float) -> Sentence:
     """Which cause has most deaths, which need not cost most years."""
     return phrase(
@@ -160,9 +172,9 @@ def coding(breaks: Sequence[str], bridged: Sequence[tuple[str, float]]) -> Sente
     if breaks:
         said.append(
             n_(
-                "From {years} on deaths are counted otherwise: the line begins anew, and no change"
+                "From {years} on counts are made otherwise: the line begins anew, and no change"
                 " is measured across.",
-                "From {years} on deaths are counted otherwise: the line begins anew each time, and"
+                "From {years} on counts are made otherwise: the line begins anew each time, and"
                 " no change is measured across.",
                 len(breaks),
                 years=names.listed(list(breaks)),

@@ -9,7 +9,7 @@ import pytest
 from engine.estimates import Estimate
 from server.sentences import cause_methods
 from server.sentences import causes as say
-from server.sentences.pieces import plain
+from server.sentences.pieces import Piece, plain
 
 pytestmark = pytest.mark.fast
 
@@ -45,6 +45,13 @@ def test_without_years_lost_it_tells_shares_of_deaths() -> None:
     assert said(say.answer("f", "Rock", "2012", estimate(np.nan), [], 0)) == (
         "Women of Rock in 2012: no death has a stated cause."
     )
+
+
+def test_what_a_law_helps_with_is_linked() -> None:
+    law = Piece("almanac-1-kannisto", "/there")
+    sentence = say.not_read("Too many reach it.", law)
+    assert law in sentence
+    assert said(sentence).startswith("Years lost per death are not given: Too many reach it. With")
 
 
 def test_deaths_before_75_with_and_without_a_chance() -> None:
