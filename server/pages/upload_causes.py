@@ -21,23 +21,25 @@ def listing(report: Report) -> Listing:
 
 
 def table(report: Report) -> Table:
-    """Deaths of each cause of the list, and how many of them were shared out, not stating all."""
+    """Deaths of each cause of the list; where some were shared out, not stating all, how many."""
     together = sum(one.deaths for one in report.by_cause)
+    spread = any(one.shared for one in report.by_cause)
     columns = (
         Column("cause", _("cause")),
         Column("deaths", _("deaths"), decimals=0),
         Column("share", _("of all deaths"), unit="%", decimals=1),
-        Column("shared", _("of them shared out"), decimals=1),
+        *((Column("shared", _("of them shared out"), decimals=1),) if spread else ()),
     )
     rows = tuple(
         Row(
             (
                 one.label if one.code else say.without_cause(),
                 one.deaths,
-                100 * one.deaths / together if together else None,
-                one.shared,
+                100 * one.deaths / together,
+                *((one.shared,) if spread else ()),
             )
         )
         for one in report.by_cause
     )
-    return Table("by_cause", _("Deaths by cause"), columns, rows, say.how())
+    note = say.how() if spread else ""
+    return Table("by_cause", _("Deaths by cause"), columns, rows, note)

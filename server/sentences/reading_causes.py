@@ -23,7 +23,7 @@ def cause_lists() -> Options:
 
 
 def cause_list_hint() -> str:
-    return _("all years of a collection go by one list")
+    return _("all years of a collection go by one list; shown again, you see how the codes fall")
 
 
 def fallen(codes: int, causes: int, sums: tuple[str, ...]) -> str:
