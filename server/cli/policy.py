@@ -9,6 +9,7 @@ from server.cli.opened import opened
 from server.cli.options import Commands, add_command
 from server.cli.tables import add_form, show
 from server.config import Config
+from server.disclosure.rounding import BASES
 from server.pages import policy
 from server.pages.policy import Trial
 from server.pages.twins import twin
@@ -31,6 +32,7 @@ def add(commands: Commands) -> None:
         examples=(
             "ebbline policy --collection quillmere",
             "ebbline policy --collection quillmere --threshold 3",
+            "ebbline policy --collection quillmere --base 5",
             'ebbline policy --collection quillmere --threshold 5 --note "As the office decided."',
         ),
     )
@@ -41,12 +43,21 @@ def add(commands: Commands) -> None:
         "--coarse-below", type=int, help=_("areas of fewer people are given by five-year ages")
     )
     command.add_argument("--zeros", choices=("shown", "withheld"), help=_("whether nil is shown"))
+    command.add_argument(
+        "--base",
+        type=int,
+        choices=(0, *BASES),
+        help=_("round all counts to multiples of it instead of withholding; 0: withhold"),
+    )
+    command.add_argument(
+        "--causes", choices=("whole", "none"), help=_("whose deaths by cause are shown")
+    )
     command.add_argument("--note", default="", help=_("why, in a sentence: sets the policy"))
     add_form(command)
 
 
 def run(asked: argparse.Namespace, config: Config) -> int:
-    names = ("threshold", "persons", "coarse_below", "zeros")
+    names = ("threshold", "persons", "coarse_below", "zeros", "base", "causes")
     given = {name: getattr(asked, name) for name in names if getattr(asked, name) is not None}
     with opened(config) as session:
         newest = policies.newest(session, asked.collection)

@@ -4,6 +4,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import ClassVar
 
+from server.disclosure.rounding import BASES
 from server.exports import status
 from server.exports.table import Column, GapKind, Row, Table
 from server.pages.form_fields import Field
@@ -62,9 +63,9 @@ def build(session: Session, code: str, trial: Trial | None = None) -> PolicyPage
             shown=_("Data owner: {owner}", owner=collection.owner),
             nav="collections",
         ),
-        answer=say.trial(trial.terms, last.cells)
+        answer=say.trial(trial.terms, last)
         if trial
-        else say.answer(collection.name, newest.terms if newest else None, last.cells),
+        else say.answer(collection.name, newest.terms if newest else None, last),
         lead=say.lead(newest.note if newest else "", last.exposed),
         tables=tuple(table for table in (effects, _marks(), past) if table.rows),
         twins={twin: f"{place}.{twin}" for twin in ("csv", "xlsx", "json")} if not trial else {},
@@ -80,15 +81,16 @@ def build(session: Session, code: str, trial: Trial | None = None) -> PolicyPage
 def _effects(kept: Mapping[int, Kept]) -> Table:
     return Table(
         "effect",
-        _("What is withheld of each edition"),
+        _("What is withheld or rounded of each edition"),
         (
             Column("edition", _("edition")),
             Column("withheld", _("counts withheld"), decimals=0),
+            Column("rounded", _("counts rounded"), decimals=0),
             Column("narrow", _("told apart from some small counts"), decimals=0),
             Column("exposed", _("may be worked out"), decimals=0),
         ),
         tuple(
-            Row((number, one.cells, one.narrow, one.exposed))
+            Row((number, one.cells, one.rounded, one.narrow, one.exposed))
             for number, one in sorted(kept.items(), reverse=True)
         ),
         say.about_effects(),
@@ -164,5 +166,24 @@ def _fields(terms: Terms) -> tuple[Field, ...]:
             _("Nil"),
             terms.zeros,
             options=(("shown", _("is shown")), ("withheld", _("is withheld"))),
+        ),
+        Field(
+            "select",
+            "base",
+            _("Rounding"),
+            str(terms.base),
+            options=(
+                ("0", _("small counts are withheld")),
+                *((str(base), _("all counts to multiples of {base}", base=base)) for base in BASES),
+            ),
+            hint=_("instead of withholding; a year keeps the way it was first shown in"),
+        ),
+        Field(
+            "select",
+            "causes",
+            _("Deaths by cause"),
+            terms.causes,
+            options=(("whole", _("of the whole")), ("none", _("none"))),
+            hint=_("none where counts are rounded"),
         ),
     )

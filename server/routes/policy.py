@@ -1,6 +1,7 @@
 """What of small counts a collection shows: /c/{collection}/policy."""
 
 import datetime as dt
+from dataclasses import replace
 
 from fastapi import APIRouter, Request, Response
 
@@ -19,7 +20,8 @@ from server.web.problem import Refusal
 from server.web.render import READ, redirect, respond
 
 router = APIRouter()
-FIELDS = ("threshold", "persons", "coarse_below", "zeros")
+NUMBERS = ("threshold", "persons", "coarse_below", "base")
+FIELDS = (*NUMBERS, "zeros", "causes")
 
 
 @router.api_route("/c/{collection}/policy", methods=READ, dependencies=[needs(Right.READ)])
@@ -63,10 +65,9 @@ def set_terms(session: SessionDep, viewer: ViewerDep, collection: str, form: For
 def read(given: dict[str, str]) -> Terms:
     """Terms as they stand in a form or an address; what is left out is as usual. ValueError."""
     usual = Terms()
-    numbers = {
-        name: _number(name, given.get(name, ""), getattr(usual, name)) for name in FIELDS[:3]
-    }
-    return Terms(**numbers, zeros=given.get("zeros") or usual.zeros)
+    numbers = {name: _number(name, given.get(name, ""), getattr(usual, name)) for name in NUMBERS}
+    zeros, causes = (given.get(name) or getattr(usual, name) for name in ("zeros", "causes"))
+    return replace(usual, **numbers, zeros=zeros, causes=causes)
 
 
 def _number(name: str, text: str, otherwise: int) -> int:

@@ -8,7 +8,7 @@ from server.sentences.text import _, n_
 
 
 class Terms(Protocol):
-    """What a policy withholds."""
+    """What a policy withholds, or rounds."""
 
     @property
     def threshold(self) -> int: ...
@@ -18,35 +18,63 @@ class Terms(Protocol):
     def zeros(self) -> str: ...
     @property
     def coarse_below(self) -> int: ...
+    @property
+    def base(self) -> int: ...
+    @property
+    def causes(self) -> str: ...
 
 
-def answer(collection: str, of: Terms | None, withheld: int) -> Sentence:
-    """`withheld` counts of the newest edition."""
+class Kept(Protocol):
+    """How many counts of an edition are withheld, and how many rounded."""
+
+    @property
+    def cells(self) -> int: ...
+    @property
+    def rounded(self) -> int: ...
+
+
+def answer(collection: str, of: Terms | None, newest: Kept) -> Sentence:
+    """Of the newest edition."""
     if of is None:
         return phrase(
             _("{collection} has no policy: every count is shown, however small."),
             collection=collection,
         )
+    if of.base:
+        return phrase(
+            _("{collection} rounds {terms}: {counts} in the newest edition."),
+            collection=collection,
+            terms=terms(of),
+            counts=_changed(of, newest),
+        )
     return phrase(
         _("{collection} withholds {terms}: {counts} in the newest edition."),
         collection=collection,
         terms=terms(of),
-        counts=_counts(withheld),
+        counts=_changed(of, newest),
     )
 
 
-def trial(of: Terms, withheld: int) -> Sentence:
+def trial(of: Terms, newest: Kept) -> Sentence:
+    if of.base:
+        return phrase(
+            _("Rounding {terms} would change {counts} of the newest edition. Nothing is set yet."),
+            terms=terms(of),
+            counts=_changed(of, newest),
+        )
     return phrase(
         _("Withholding {terms} would take {counts} of the newest edition. Nothing is set yet."),
         terms=terms(of),
-        counts=_counts(withheld),
+        counts=_changed(of, newest),
     )
 
 
 def terms(of: Terms) -> str:
-    """What is withheld, to stand inside a sentence."""
+    """What is withheld or rounded, to stand inside a sentence."""
     told = [
-        _("deaths from 0 to {most}", most=of.threshold - 1)
+        _("all deaths and births to multiples of {base}", base=of.base)
+        if of.base
+        else _("deaths from 0 to {most}", most=of.threshold - 1)
         if of.zeros == "withheld"
         else _("deaths from 1 to {most}", most=of.threshold - 1)
     ]
@@ -59,11 +87,30 @@ def terms(of: Terms) -> str:
                 people=whole(of.coarse_below),
             )
         )
+    if of.causes == "none" and not of.base:
+        told.append(_("all deaths by cause"))
     return "; ".join(told)
 
 
-def _counts(withheld: int) -> str:
-    return n_("one count", "{count} counts", withheld, count=whole(withheld))
+def _changed(of: Terms, newest: Kept) -> str:
+    """What these terms do, and what stays as years were first shown."""
+    if of.base and newest.cells:
+        return _(
+            "{counts}, and {others} withheld in years that were shown so before",
+            counts=_counts(newest.rounded),
+            others=_counts(newest.cells),
+        )
+    if newest.rounded and not of.base:
+        return _(
+            "{counts}, and {others} rounded in years that were shown so before",
+            counts=_counts(newest.cells),
+            others=_counts(newest.rounded),
+        )
+    return _counts(newest.rounded if of.base else newest.cells)
+
+
+def _counts(count: int) -> str:
+    return n_("one count", "{count} counts", count, count=whole(count))
 
 
 def lead(note: str, exposed: int) -> tuple[Sentence, ...]:
@@ -91,10 +138,27 @@ def how() -> tuple[Sentence, ...]:
         phrase(text)
         for text in (
             _(
-                "Counts that add up to a sum that is shown protect one another: where a small count"
-                " is withheld, so are others of the same age and area, until no withheld one can be"
-                " worked out, nor be told apart from other small ones, from all that this edition"
-                " and those before it show."
+                "Where counts are withheld: those that add up to a sum that is shown"
+                " protect one another. With a small count others of the same age and area are"
+                " withheld, until no withheld one can be worked out, nor be told apart from other"
+                " small ones, from all that this edition and those before it show."
+            ),
+            _(
+                "Where counts are rounded: each count of women or of men, in an area without parts,"
+                " at one age, is given as a multiple of the base below or above it, by a draw that"
+                " adds and takes nothing on average and is kept secret. The same count is rounded"
+                " in the same way in every edition. All sums are sums of rounded counts, so that"
+                " none can be used to work another out; those of many counts may be off by more"
+                " than the base. Person-years are not rounded."
+            ),
+            _(
+                "A year keeps the way, withheld or rounded and to which base, that it was first"
+                " shown in, since each would tell what the other hides."
+            ),
+            _(
+                "Deaths by cause are shown, where they are, of areas that are part of none, and"
+                " protected as counts of areas are. At an age where all deaths are withheld, so is"
+                " every cause. Where counts are rounded there are none by cause."
             ),
             _(
                 "What one edition withholds stays withheld in those after it; a number that changed"
@@ -102,8 +166,9 @@ def how() -> tuple[Sentence, ...]:
             ),
             _(
                 "Figures that rest on a withheld count are worked out with an estimate in its"
-                " place, made of what is shown and of nothing else, and are given to fixed"
-                " decimals. No death rate, chance of dying or limit of a withheld count is given."
+                " place, made of what is shown and of nothing else, so they may be a little off;"
+                " like those of rounded counts they are given to fixed decimals. No death rate,"
+                " chance of dying or limit of a withheld count is given."
             ),
             _(
                 "Addresses with figures=full show everything, for work inside the office. What was"
@@ -158,7 +223,10 @@ def states() -> tuple[tuple[str, str, str], ...]:
         (
             _("a number"),
             "E",
-            _("It rests on estimates: of withheld counts, of split areas, or made from rates."),
+            _(
+                "It rests on estimates: of withheld counts, rounded ones, split areas, or counts"
+                " made from rates."
+            ),
         ),
         (_("a number"), "B", _("The first year after a break in the series.")),
     )

@@ -97,11 +97,13 @@ def later(given: dict[str, Panel], seed: int) -> dict[str, Panel]:
     }
 
 
-def deliver(session: Session, seed: int, *, first: dict[str, Panel] | None = None) -> None:
+def deliver(
+    session: Session, seed: int, *, first: dict[str, Panel] | None = None, terms: Terms = TERMS
+) -> None:
     """Two editions under a policy."""
     given = first or panels(seed)
     edition(session, given, code=CODE, parents=PARENTS)
-    set_policy(session, collection=CODE, terms=TERMS, note="Small counts.", by=LOCAL, now=NOW)
+    set_policy(session, collection=CODE, terms=terms, note="Small counts.", by=LOCAL, now=NOW)
     edition(session, later(given, seed), code=CODE, parents=PARENTS)
 
 

@@ -28,7 +28,7 @@ def test_one_form_tries_and_sets_and_keeps_what_was_typed(reader: TestClient) ->
     main = tried.partition("<main")[2]
     assert main.count('name="threshold"') == 1
     assert 'value="As was decided."' in main
-    assert 'formmethod="get" formnovalidate>Say what it would withhold' in main
+    assert 'formmethod="get" formnovalidate>Say what it would do' in main
 
 
 def test_a_policy_is_set_and_pages_withhold(reader: TestClient) -> None:
@@ -48,6 +48,31 @@ def test_a_policy_is_set_and_pages_withhold(reader: TestClient) -> None:
     assert "not for release" in full.text
 
 
+def test_counts_are_rounded_instead(reader: TestClient) -> None:
+    place = "/c/isle/1/population-year{}?of=rock.f.2014&figures=released&settings=almanac-1"
+    tried = reader.get(PLACE, params=TERMS | {"base": "5"}).text
+    assert "Rounding all deaths and births to multiples of 5 would change" in tried
+    reader.post(PLACE, data=TERMS | {"base": "5", "note": "As decided."})
+    page = reader.get(PLACE).text
+    assert "rounds all deaths and births to multiples of 5" in page
+    assert '<option value="5" selected>' in page
+    shown = reader.get(place.format("")).text
+    assert "blot" not in shown
+    assert "rounded at random, up or down, to multiples of 5" in shown
+    figures = reader.get(place.format(".json")).json()["figures"]
+    rows = [row for table in figures.values() for row in table["rows"] if "age" in row]
+    deaths = [row["deaths"] for row in rows if isinstance(row.get("deaths"), float | int)]
+    assert sum(count > 0 for count in deaths) > 3
+    assert all(count % 5 == 0 for count in deaths)
+
+
+@pytest.mark.parametrize("more", [{"persons": "100"}, {"zeros": "withheld"}])
+def test_counts_are_not_rounded_and_withheld(reader: TestClient, more: dict[str, str]) -> None:
+    answer = reader.post(PLACE, data=TERMS | {"base": "5", "note": "As decided."} | more)
+    assert answer.status_code == 409
+    assert "Rounded counts cannot also be withheld" in answer.text
+
+
 def test_a_released_page_does_not_give_the_digest_of_the_counts(reader: TestClient) -> None:
     place = "/c/isle/1/contents?figures={}&settings=almanac-1"
     open_ = reader.get(place.format("released")).text
@@ -63,6 +88,8 @@ def test_a_released_page_does_not_give_the_digest_of_the_counts(reader: TestClie
         ("threshold", "1", "it can be 2 to 100"),
         ("threshold", "many", "it takes a whole number"),
         ("zeros", "hidden", "they can be shown or withheld"),
+        ("base", "4", "the base can be 3, 5, 10, or 0 to withhold"),
+        ("causes", "some", "they can be shown for the whole, or none"),
         ("note", "", "A policy needs a note"),
     ],
 )
