@@ -19,6 +19,7 @@ from server.sentences.text import _
 
 NAMED = 4  # causes drawn in colours of their own
 SHOWN = 18  # rows at most
+AHEAD = 15.0  # years of age that a name takes up
 FARTHEST = 76.0  # age beyond which a name has no room on the phone
 
 
@@ -94,9 +95,9 @@ def by_age(found: CauseFigures, source: str) -> Chart | None:
     most = 1.2 * float(np.nanmax(density[list(shown)]))
     named = _standing_out(density, shown, least=0.05 * most)
     others = [_line(found, density[at], at, drawn, None) for at in shown if at not in named]
+    labels = _labels(grid.mids[drawn], density[named], 0.12 * most)
     lines = [
-        _line(found, density[at], at, drawn, place, _apart(density[named], place))
-        for place, at in enumerate(named)
+        _line(found, density[at], at, drawn, place, labels[place]) for place, at in enumerate(named)
     ]
     return Chart(
         key="by-age",
@@ -136,7 +137,7 @@ def _line(
     at: int,
     drawn: slice,
     place: int | None,
-    peak: int = 0,
+    label_at: At | None = None,
 ) -> Series:
     """One cause; those that cost most in a colour of their own, named where they stand out."""
     grid, label = found.panel.grid, cause_choices.name(found.causes[at])
@@ -147,7 +148,7 @@ def _line(
         values(density),
         role="ink-2" if place is None else f"s{place + 1}",
         weight="many" if place is None else "this" if place == 0 else "one",
-        at=None if place is None else _beside(mids, density, peak),
+        at=label_at,
         name=label,
         names=grid.labels[drawn],
     )
@@ -177,14 +178,24 @@ def _apart(named: Array, place: int) -> int:
     return int(np.argmax(np.where(peaks, named[place], -1.0) if peaks.any() else above))
 
 
-def _beside(mids: Array, density: Array, at: int) -> At:
-    """Where a name stands: over a peak, before a rise, behind a fall."""
-    x, y = float(mids[at]), float(density[at])
-    before = density[at - 1] if at else 0.0
-    after = density[at + 1] if at + 1 < len(density) else 0.0
-    if before < y >= after:
-        return At(x, y, "center", dy=12, narrow_x=min(x, FARTHEST), narrow_y=y)
-    return At(x, y, "right", dx=-8, dy=4) if after > y else At(x, y, "left", dx=8, dy=4)
+def _labels(mids: Array, named: Array, near: float) -> list[At]:
+    """Where the names stand: over a peak, before a rise, behind a fall; one near another above it.
+    A peak that others overtop soon after has its name before it."""
+    found: list[At] = []
+    for place, line in enumerate(named):
+        at = _apart(named, place)
+        x, y = float(mids[at]), float(line[at])
+        after = float(line[at + 1]) if at + 1 < len(line) else 0.0
+        ahead = (mids > x) & (mids <= x + AHEAD)
+        overtopped = bool((np.delete(named, place, axis=0)[:, ahead] > y).any())
+        over = 12 + 16 * sum(abs(one.x - x) < AHEAD + 10 and abs(one.y - y) < near for one in found)
+        if overtopped or after > y:
+            found.append(At(x, y, "right", dx=-8, dy=4))
+        elif (float(line[at - 1]) if at else 0.0) < y:
+            found.append(At(x, y, "center", dy=over, narrow_x=min(x, FARTHEST), narrow_y=y))
+        else:
+            found.append(At(x, y, "left", dx=8, dy=4))
+    return found
 
 
 def _most_of(found: CauseFigures, at: int) -> str:
