@@ -45,6 +45,11 @@ READ = {
     "reproduce": "/reproduce",
     "population-year-withheld": "/c/quillmere/3/population-year"
     "?of=little-auk.f.2021&figures=released&settings=almanac-1",
+    "causes": "/c/quillmere-causes/1/causes?of=tollbay.m.2017"
+    f"&causes=groups&ill_defined=kept&undetermined=kept&ratios=kept{_CHOICES}",
+    "causes-each": "/c/quillmere-causes/1/causes?of=mainland.p.2018&cause=dementia"
+    "&avoidable=cancer-lung&causes=causes&ill_defined=spread&undetermined=spread&ratios=applied"
+    "&figures=released&settings=almanac-1-kannisto",
     "policy": "/c/quillmere/policy",
     "what-if": "/c/quillmere/2/what-if?at=tollbay.m.2017&of=e0"
     f"&by=-20&from=30&to=59&sex=p&cause=&target=78{_CHOICES}",
