@@ -11,7 +11,7 @@ import datetime as dt
 import json
 from collections import Counter
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 import numpy as np
@@ -32,10 +32,30 @@ COLUMNS = Mapping(
 )
 SEXES = ("f", "m")
 SIZES = (10_000, 50_000, 250_000, 1_000_000)  # persons in an area
+BY_CAUSE = (50_000, 1_000_000)
 LAWS = ("poisson", "overdispersed")
 AREAS, YEARS = 10, 20
 UNEVEN = 1.5  # variance over mean of a cell, beside shocks that all ages of an area and year share
 SHOCK = 0.03
+# causes: share of the deaths at 40, how it changes with age, and how unevenly it moves from year to
+# year beside chance
+CAUSES = {
+    "C34": (0.10, -0.010, 0.03),
+    "C50": (0.06, -0.020, 0.03),
+    "C25": (0.15, -0.012, 0.03),
+    "I21": (0.12, 0.010, 0.04),
+    "I64": (0.05, 0.020, 0.04),
+    "I50": (0.04, 0.030, 0.05),
+    "J18": (0.02, 0.030, 0.15),
+    "K70": (0.08, -0.030, 0.05),
+    "F03": (0.003, 0.070, 0.06),
+    "X64": (0.12, -0.050, 0.05),
+    "X44": (0.08, -0.060, 0.08),
+    "W19": (0.02, 0.015, 0.06),
+    "R54": (0.01, 0.030, 0.08),
+}
+
+YOUNGEST = [{"F03": 40, "X64": 10, "X44": 15, "K70": 20}.get(code, 0) for code in CAUSES]
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,19 +66,31 @@ class Counts:
     deaths: Array
     people: Array
     first: int
+    causes: Array | None = None  # deaths of each of CAUSES, [cause, area, sex, year, age]
 
     def csv(self) -> bytes:
+        """Deaths and people; by cause, deaths alone, with rows of all causes beside them."""
+        if self.causes is None:
+            return self._csv("area,sex,year,age,deaths,population", self.deaths, "")
+        rows = [self._csv("area,sex,year,age,deaths,population,cause", self.deaths, ",all causes")]
+        rows += [
+            self._csv("", deaths, f",{code}")
+            for code, deaths in zip(CAUSES, self.causes, strict=True)
+        ]
+        return b"".join(rows)
+
+    def _csv(self, heading: str, counts: Array, cause: str) -> bytes:
         labels = [label.replace("–", "-") for label in self.grid.labels]
-        lines = ["area,sex,year,age,deaths,population"]
+        lines = [heading]
         for (area, sex, year), _ in np.ndenumerate(self.deaths[..., 0]):
             head = f"a{area},{SEXES[sex]},{self.first + year}"
             lines += [
-                f"{head},{label},{died:.12g},{lived:.12g}"
+                f"{head},{label},{died:.12g},{lived:.12g}{cause}"
                 for label, died, lived in zip(
-                    labels, self.deaths[area, sex, year], self.people[area, sex, year], strict=True
+                    labels, counts[area, sex, year], self.people[area, sex, year], strict=True
                 )
             ]
-        return "\n".join(lines).encode()
+        return "\n".join(lines).encode() + b"\n"
 
 
 def danish(grid: AgeGrid) -> Counts:
@@ -91,9 +123,33 @@ def simulated(grid: AgeGrid, persons: int, law: str, seed: int) -> Counts:
     return Counts(grid, rng.poisson(mean).astype(float), people, 2001)
 
 
+def by_cause(counts: Counts, seed: int) -> Counts:
+    """The same deaths parted among causes, whose shares change with age, slowly with the years, and
+    unevenly from year to year."""
+    rng = generator("false alarms by cause", f"{counts.grid.code} {seed}")
+    at_40, slope, uneven = (
+        np.array(of)[:, None, None, None, None] for of in zip(*CAUSES.values(), strict=True)
+    )
+    ages = np.array(counts.grid.starts) - 40.0
+    size = counts.deaths.shape[:3]
+    trend = rng.normal(0, 0.01, (len(CAUSES), size[0], 1, 1, 1)) * np.arange(size[2])[:, None]
+    moves = rng.normal(0, uneven, (len(CAUSES), size[0], 1, size[2], 1))
+    weights = at_40 * np.exp(slope * ages + trend + moves)
+    weights = np.where(
+        (np.array(YOUNGEST)[:, None, None, None, None] > counts.grid.starts), 0, weights
+    )
+    weights = np.moveaxis(weights / weights.sum(axis=0), 0, -1)
+    weights = np.broadcast_to(weights, (*counts.deaths.shape, len(CAUSES)))
+    parted = rng.multinomial(np.round(counts.deaths).astype(np.int64), weights)
+    return replace(counts, causes=np.moveaxis(parted, -1, 0).astype(float))
+
+
 def alarms(counts: Counts) -> Counter[str]:
     """How often each check found something."""
-    found = parse([Handed("counts", "clean.csv", counts.csv(), COLUMNS)]).problems
+    mapping = COLUMNS
+    if counts.causes is not None:
+        mapping = replace(COLUMNS, cause="cause", cause_list="short")
+    found = parse([Handed("counts", "clean.csv", counts.csv(), mapping)]).problems
     told: Counter[str] = Counter()
     for problem in found:
         told[problem.key] += 1 + problem.others
@@ -113,6 +169,10 @@ def clean(repeats: int) -> Iterator[tuple[str, list[Counts]]]:
             for persons in SIZES:
                 name = f"areas of {persons:,} persons, {law}, {ages}"
                 yield name, [simulated(grid, persons, law, seed) for seed in range(repeats)]
+    for persons in BY_CAUSE:
+        name = f"areas of {persons:,} persons, overdispersed, by cause"
+        made = (simulated(FIVES, persons, "overdispersed", seed) for seed in range(repeats))
+        yield name, [by_cause(one, seed) for seed, one in enumerate(made)]
 
 
 def measure(repeats: int, *, only: str = "") -> FalseAlarms:

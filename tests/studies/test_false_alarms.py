@@ -9,6 +9,7 @@ from server.intake.checks import KINDS
 from server.intake.checks.alarms import FalseAlarms, kept
 from tests.studies import false_alarms
 from tests.studies.false_alarms import (
+    BY_CAUSE,
     LAWS,
     SINGLE,
     SIZES,
@@ -40,7 +41,7 @@ def test_what_is_kept_holds_the_bound_and_names_checks_that_are() -> None:
     stored = kept()
     assert dt.date.fromisoformat(stored.measured) >= dt.date(2026, 12, 1)
     assert {key for rates in stored.rates.values() for key in rates} <= set(KINDS)
-    assert len(stored.data) == 3 + 2 * len(SIZES) * len(LAWS)
+    assert len(stored.data) == 3 + 2 * len(SIZES) * len(LAWS) + len(BY_CAUSE)
     assert all(stored.of(key).worst <= BOUND for key in KINDS)
     assert sum(stored.rates[one.name] != {} for one in stored.data if "Denmark" in one.name) == 0
     assert FalseAlarms.from_json(stored.to_json()) == stored

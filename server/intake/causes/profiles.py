@@ -1,8 +1,8 @@
 """Shares of causes in the deaths of an area and year, and their steps from one year to the next.
 
 All are of both sexes and all ages together. A step is judged by its standard error, widened by as
-much as the causes of the area move: of their squared steps the median, over that of a chi-square
-number with one degree of freedom.
+much as the causes of the area, or the cause itself, move: of their squared steps the median, over
+that of a chi-square number with one degree of freedom.
 """
 
 from collections import defaultdict
@@ -18,6 +18,7 @@ from server.store.records import Break, Cause, Key, Vector
 
 LEAST = 100  # deaths of an area and year whose shares are looked at
 MIDDLE = 0.4549  # median of a chi-square number with one degree of freedom
+ENOUGH = 4  # steps of a cause that tell how it moves
 BACK = 2  # years to look back for the year before
 
 
@@ -135,7 +136,7 @@ def steps(profiles: Profiles) -> Iterator[Step]:
         if before and min(before.total, after.total) >= LEAST:
             found[area].append(Step(area, first, year, before, after, _z(before, after)))
     for steps in found.values():
-        uneven = np.sqrt(_dispersion(steps))
+        uneven = np.sqrt(_dispersion(np.stack([step.z for step in steps])))
         yield from (replace(step, z=step.z / uneven) for step in steps)
 
 
@@ -147,7 +148,14 @@ def _z(before: Line, after: Line) -> Array:
     return np.divide(step, error, out=np.zeros_like(step), where=error > 0)
 
 
-def _dispersion(steps: list[Step]) -> float:
-    """How much more than by chance the shares of an area move, at least 1."""
-    squares = np.concatenate([step.z[step.z != 0] ** 2 for step in steps] or [np.zeros(0)])
-    return max(1.0, float(np.median(squares)) / MIDDLE) if len(squares) else 1.0
+def _dispersion(z: Array) -> Array:
+    """How much more than by chance the shares of an area move, [step, leaf] -> [leaf]: those of all
+    causes or, where there are steps enough, of the cause itself, the greater, and at least 1."""
+    squares = np.where(z != 0, z * z, np.nan)
+    if np.isnan(squares).all():
+        return np.ones(z.shape[-1])
+    together = float(np.nanmedian(squares)) / MIDDLE
+    known = (~np.isnan(squares)).sum(axis=0) >= ENOUGH
+    own = np.ones(z.shape[-1])
+    own[known] = np.nanmedian(squares[:, known], axis=0) / MIDDLE
+    return np.maximum(own, max(1.0, together))
