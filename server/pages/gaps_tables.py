@@ -63,19 +63,20 @@ def cells(found: Gaps) -> Table:
     heads = [Column("age", _("age"))]
     heads += [Column("cause", _("cause"))] if by_cause else []
     heads += [
-        Column("deaths", _("deaths there were"), decimals=0, counted=True),
+        Column("deaths", _("deaths"), decimals=0, counted=True),
         Column("own", _("own rate"), _("per 100,000"), 1),
         Column("benchmark", _("benchmark"), _("per 100,000"), 1),
         *columns("gain", _("gain"), 1, unit=_("days")),
         Column("alike", _("if all alike"), _("days"), 1),
         *columns("unevenness", _("change of H"), 2, unit=_("thousandths"), signed=True),
         Column("clear", _("clear?")),
-        Column("first", _("among first five"), _("%"), 0),
+        Column("first", _("first five"), _("chance, %"), 0),
     ]
     note = _(
         "Gain: by what life expectancy at birth would be longer with the benchmark’s rate there"
         " alone. If all alike: what chance alone shows here on average if all areas are alike."
-        " Rates that lie below the benchmark’s have no gap."
+        " First five: the chance of being one of the five that add most. Rates that lie below the"
+        " benchmark’s have no gap."
     )
     title = _("Gaps of {who} to the benchmark", who=names.sex_and_year(found.of.sex, found.period))
     return Table("gaps", title, tuple(heads), rows, note)
@@ -193,4 +194,4 @@ def chart(found: Gaps, source: str) -> Chart | None:
 def _label(place: tuple[str, str], is_clear: bool) -> str:
     ages, cause = place
     text = _("{ages}, {cause}", ages=ages, cause=names.inside(cause)) if cause else ages
-    return text if is_clear else _("{place} (not clear)", place=text)
+    return text if is_clear else _("not clear: {place}", place=text)
