@@ -8,6 +8,7 @@ from urllib.parse import urlencode
 
 import numpy as np
 
+from engine.ages import Array
 from server.results.headlines import Headline, headlines
 from server.results.holdings import NotInEdition
 from server.results.keys import (
@@ -320,6 +321,12 @@ def yearly(
     )
 
 
+def _summed(values: Array) -> float:
+    """Without the gaps, which few have."""
+    found = float(np.add.reduce(values))
+    return found if found == found else float(np.nansum(values))
+
+
 @dataclass(frozen=True, slots=True)
 class _Sums:
     cells: Cells
@@ -332,12 +339,11 @@ class _Sums:
 
     def _of(self, area: str, measure: str, period: str) -> float:
         """Persons, or women and men; of an area without counts those of its parts."""
-        persons, *sexes = (
-            self.cells.get(Key(area, sex, period, measure)) for sex in ("p", "f", "m")
-        )
+        persons = self.cells.get(Key(area, "p", period, measure))
+        sexes = (self.cells.get(Key(area, sex, period, measure)) for sex in ("f", "m"))
         held = [persons] if persons else [one for one in sexes if one]
         if held:
-            return float(sum(np.nansum(one.values) for one in held))
+            return sum(_summed(one.values) for one in held)
         parts = [self._of(one.code, measure, period) for one in self.tree if one.parent == area]
         known = [one for one in parts if np.isfinite(one)]
         return sum(known) if known else float("nan")

@@ -2,7 +2,7 @@
 
 import json
 import re
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import asdict, dataclass
 from urllib.parse import urlencode
 
@@ -76,24 +76,28 @@ def preview(
 ) -> Preview:
     """The change beside all that its base holds."""
     after = _after(change, base)
-    altered = [
-        one
-        for key in sorted(base.keys() | after.keys())
-        if base.get(key) is not after.get(key)  # what stays is the very same
-        if (one := Altered(key, base.get(key), after.get(key))) and _differs(one)
+    gone = base.keys() - change.cells.keys() if change.replace else base.keys() & change.ended
+    sizes = [  # what stays is the very same
+        (key, "added", len(cell.grid)) for key, cell in change.cells.items() if key not in base
     ]
-    touched = {one.key.period for one in altered}
-    moved = {one.key.period for one in altered if one.kind != "marks"}
-    restated = [one for one in altered if one.restated and one.key.period not in moved]
+    restated = []
+    for key in (*(key for key in base if key in change.cells), *(gone - change.cells.keys())):
+        one = Altered(key, base[key], after.get(key))
+        if (kind := one.kind) != "marks" or one.restated:
+            sizes.append((key, kind, _ages(one, kind)))
+            restated += [one] if one.restated else []
+    touched = {key.period for key, _kind, _size in sizes}
+    moved = {key.period for key, kind, _size in sizes if kind != "marks"}
+    restated = [one for one in restated if one.key.period not in moved]
     both = tuple(
         {key: cell for key, cell in side.items() if key.period in touched} for side in (base, after)
     )
     return Preview(
         base=change.base,
         taking=change.taking,
-        schedules=_counted(altered, ages=False),
-        cells=_counted(altered, ages=True),
-        by_cause=sum(one.ages for one in altered if one.key.cause and one.kind != "marks"),
+        schedules=_counted((kind, 1) for _key, kind, _size in sizes),
+        cells=_counted((kind, size) for _key, kind, size in sizes),
+        by_cause=sum(size for key, kind, size in sizes if key.cause and kind != "marks"),
         years=yearly(both[0], both[1], change.areas, base_areas),
         settled=_years(restated, "final"),
         unsettled=_years(restated, "provisional"),
@@ -108,24 +112,27 @@ def _after(change: Change, base: Cells) -> dict[Key, Vector]:
     return kept | dict(change.cells)
 
 
-def _differs(one: Altered) -> bool:
-    return one.kind != "marks" or one.restated
-
-
 def _years(restated: list[Altered], status: str) -> tuple[str, ...]:
     return tuple(
         sorted({one.key.period for one in restated if one.now and one.now.status == status})
     )
 
 
-def _counted(altered: list[Altered], *, ages: bool) -> Effect:
-    """How many schedules of each kind, or how many numbers of age groups in them."""
+KINDS = {"added": "added", "dropped": "dropped", "marks": "restated"}  # others are changed
+
+
+def _counted(sizes: Iterable[tuple[str, int]]) -> Effect:
+    """How many there are of each kind."""
     found = {"added": 0, "changed": 0, "restated": 0, "dropped": 0}
-    kinds = {"added": "added", "dropped": "dropped", "marks": "restated"}
-    for one in altered:
-        size = len((one.now or one.then).grid) if one.kind == "marks" else one.ages  # type: ignore[union-attr]
-        found[kinds.get(one.kind, "changed")] += size if ages else 1
+    for kind, size in sizes:
+        found[KINDS.get(kind, "changed")] += size
     return Effect(**found)
+
+
+def _ages(one: Altered, kind: str) -> int:
+    """How many numbers of age groups: all of them where another status stands beside them."""
+    held = one.now or one.then
+    return len(held.grid) if kind == "marks" and held else one.ages
 
 
 def asked(taking: Taking) -> str:
