@@ -1,5 +1,7 @@
 """Charts of every kind, small, for the tests of the figure."""
 
+from dataclasses import replace
+
 from server.charts.chart import At, Break, Chart, Drop, Mark, Note, Series
 
 LINE = Series(
@@ -89,4 +91,24 @@ RANKED = a_chart(
     y_text=("Northlade and the two Capes, men, 2021", "Quillmere, women, 2021"),
     series=(Series("change", (-0.22, 0.05), (2.0, 1.0), draw="reaches", names=("a", "b")),),
 )
-ALL = (a_chart(), BARS, TREND, MARKED, RATIO, BETWEEN, RANKED)
+WHISKERED = replace(
+    RANKED,
+    key="whiskered",
+    series=(replace(RANKED.series[0], low=(-0.3, None), high=(-0.1, None)),),
+)
+CELLS = a_chart(
+    key="cells",
+    size="rows",
+    series=(
+        Series(
+            "",
+            (10.0, 20.0),
+            (2.0, 1.0),
+            draw="squares",
+            widths=(20.0, 5.0),
+            provisional=(False, True),
+            names=("a", "b"),
+        ),
+    ),
+)
+ALL = (a_chart(), BARS, TREND, MARKED, RATIO, BETWEEN, RANKED, WHISKERED, CELLS)

@@ -11,7 +11,17 @@ from server.charts.figure import figure
 from server.charts.margins import margins
 from server.charts.template import NARROW, PRINT, WIDE
 from tests.house.tree import ROOT
-from tests.server.charts.records import ALL, BARS, BETWEEN, MARKED, RATIO, TREND, a_chart
+from tests.server.charts.records import (
+    ALL,
+    BARS,
+    BETWEEN,
+    CELLS,
+    MARKED,
+    RATIO,
+    TREND,
+    WHISKERED,
+    a_chart,
+)
 
 CSS = ROOT / "static/css"
 TOKENS = set(re.findall(r"--([a-z0-9-]+):", (CSS / "tokens.css").read_text(encoding="utf-8")))
@@ -188,3 +198,17 @@ def test_a_ratio_scale_places_words_by_logarithm() -> None:
 )
 def test_ticks_share_one_number_of_decimals(ticks: tuple[float, ...], expected: str) -> None:
     assert figure(a_chart(y_ticks=ticks), say)["layout"]["yaxis"]["tickformat"] == expected
+
+
+def test_amounts_have_whiskers_along_their_rows() -> None:
+    dots = figure(WHISKERED, str)["data"][1]
+    assert dots["error_x"]["array"] == [pytest.approx(0.12), None]
+    assert dots["error_x"]["arrayminus"] == [pytest.approx(0.08), None]
+    assert figure(ALL[6], str)["data"][1]["error_x"] == {"visible": False}
+
+
+def test_squares_are_as_large_as_they_are_told_and_open_below_nought() -> None:
+    (cells,) = figure(CELLS, str)["data"]
+    assert cells["marker"]["size"] == [20.0, 5.0]
+    assert cells["marker"]["color"] == ["@s1", "@ground"]
+    assert cells["marker"]["symbol"] == "square"

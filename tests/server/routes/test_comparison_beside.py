@@ -80,7 +80,7 @@ def test_the_policy_of_the_other_collection_is_kept(two: Session, reader: TestCl
     text = reader.get(COAST.replace("comparison?", "comparison.json?")).json()
     set_policy(two, collection="coast", terms=Terms(100), note="Small counts.", by=LOCAL, now=NOON)
     after = reader.get(COAST.replace("comparison?", "comparison.json?")).json()
-    assert text["tables"] != after["tables"]
+    assert text["figures"] != after["figures"]
     page = reader.get(COAST).text
     assert "Withheld" in page
     full = reader.get(COAST.replace("released", "full"))
