@@ -26,6 +26,15 @@ READ = {
     f"?this=northlade.f.2021&that=tollbay.f.2021&of=mode{_CHOICES}",
     "comparison-superseded": "/c/quillmere/1/comparison"
     f"?this=northlade.f.2021&that=northlade.f.2011&of=e0{_CHOICES}",
+    "comparison-rest": "/c/quillmere/2/comparison"
+    f"?this=tollbay.m.2017&that=quillmere.m.2017&of=e0&overlap=rest{_CHOICES}",
+    "comparison-revision": "/c/quillmere/2/comparison"
+    f"?this=northlade.m.2021&that=northlade.m.2021&that_edition=1&of=e0{_CHOICES}",
+    "comparison-standard": "/c/quillmere/2/comparison"
+    f"?this=tollbay.m.2017&standard=gbd2010&of=e0{_CHOICES}",
+    "comparison-causes": "/c/quillmere-causes/1/comparison"
+    "?this=tollbay.m.2017&that=mainland.m.2017&of=e0&overlap=rest"
+    f"&causes=groups&ill_defined=kept&undetermined=kept&ratios=kept{_CHOICES}",
     "trend": "/c/quillmere/2/trend"
     f"?of=e0&area=northlade&area=tollbay&sex=m&from=1999&to=2023{_CHOICES}",
     "trend-sexes": "/c/quillmere/2/trend"
