@@ -13,7 +13,7 @@ from engine.causes.counts import CauseCounts
 from engine.causes.reassigned import comparable, completed, spread
 from engine.panel import Panel
 from server.results.causes import APPLIED, CAUSES, NOT_STATED, SPREAD, CauseChoice, Causes, Listed
-from server.store.causes import top_of
+from server.store.causes import lineages
 from server.store.records import Break, Key, Vector
 
 Cells = Mapping[Key, Vector]
@@ -118,8 +118,9 @@ class Treatment:
         self.choice, self.leaves = choice, listed.leaves
         self.row = {leaf.code: at for at, leaf in enumerate(self.leaves)}
         self.rows = listed.rows(choice.level)
-        self.top = top_of(listed.causes)
-        self.ratios = listed.ratios if choice.ratios == APPLIED else ()
+        self.lineage = lineages(listed.causes)
+        known = tuple(one for one in listed.ratios if one.cause in self.lineage)
+        self.ratios = known if choice.ratios == APPLIED else ()
         self.kind = np.array([*(leaf.kind for leaf in self.leaves), NOT_STATED.code])
         self.kinds = tuple(dict.fromkeys(self.kind.tolist()))
 
@@ -213,7 +214,7 @@ class Treatment:
         found = np.full((len(places), len(self.leaves)), np.nan)
         for one in self.ratios:
             before = [p.period < one.period and one.area in ("", p.area) for p in places]
-            moved = [one.cause in (leaf.code, self.top[leaf.code]) for leaf in self.leaves]
+            moved = [one.cause in self.lineage[leaf.code] for leaf in self.leaves]
             ratio = (one.ratio or 1.0) + (one.ratio_error or 0.0) * (one is higher)
             here = np.outer(before, moved)
             found = np.where(here, np.nan_to_num(found, nan=1.0) * ratio, found)
@@ -223,7 +224,7 @@ class Treatment:
         """The rows that are shown, of those of the list's causes without parts."""
         if self.choice.level == CAUSES:
             return values
-        tops = [self.top[leaf.code] for leaf in self.leaves]
+        tops = [self.lineage[leaf.code][-1] for leaf in self.leaves]
         starts = [tops.index(row.code) for row in self.rows]  # the list keeps parts together
         return joined.reduceat(values, [*starts, len(tops)], axis=-2)
 

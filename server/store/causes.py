@@ -113,15 +113,20 @@ def leaves(causes: Iterable[Cause]) -> tuple[Cause, ...]:
     return tuple(cause for cause in listed if cause.code not in wholes)
 
 
-def top_of(causes: Iterable[Cause]) -> dict[str, str]:
-    """Code of every cause to that of the top of the tree that it lies under.
+def lineages(causes: Iterable[Cause]) -> dict[str, tuple[str, ...]]:
+    """Code of every cause to the codes from it to the top of the tree.
 
-    >>> top_of([Cause("heart", "", ""), Cause("coronary", "", "heart")])
-    {'heart': 'heart', 'coronary': 'heart'}
+    >>> lineages([Cause("heart", "", ""), Cause("coronary", "", "heart")])
+    {'heart': ('heart',), 'coronary': ('coronary', 'heart')}
     """
     above = {cause.code: cause.parent for cause in causes}
 
-    def top(code: str) -> str:
-        return top(above[code]) if above.get(code) else code
+    def lineage(code: str) -> tuple[str, ...]:
+        return (code, *lineage(above[code])) if code in above else ()
 
-    return {code: top(code) for code in above}
+    return {code: lineage(code) for code in above}
+
+
+def top_of(causes: Iterable[Cause]) -> dict[str, str]:
+    """Code of every cause to that of the top of the tree that it lies under."""
+    return {code: lineage[-1] for code, lineage in lineages(causes).items()}

@@ -234,15 +234,20 @@ def times_others() -> float:
     return float((others - 0.25 * own["heart"][3]) / others)
 
 
-def test_a_ratio_of_a_group_is_that_of_each_of_its_causes() -> None:
+def test_a_ratio_of_a_group_is_that_of_each_of_its_causes_and_of_another_list_is_none() -> None:
     own = counts(11)
-    said = (Break("", "2003", "coding", "body", ratio=0.5),)
+    said = tuple(Break("", "2003", "coding", of, ratio=0.5) for of in ("body", "I20-I25"))
     one = PopulationYear("a", "f", "2001")
     beside = Beside(causes=CauseChoice("causes", ratios="applied"))
     found = assembled(cells("a.f.2001", own), [one], beside, Listed(LIST, said))[one].causes
     assert found is not None
+    assert found.ratios == said[:1]
     for code in ("heart", "lungs"):
         assert_allclose(ages(found, code), 0.5 * own[code])
+    middle = (Cause("all", "All"), *(replace(one, parent=one.parent or "all") for one in LIST))
+    deep = assembled(cells("a.f.2001", own), [one], beside, Listed(middle, said))[one].causes
+    assert deep is not None
+    assert_array_equal(deep.counts.deaths, found.counts.deaths)
 
 
 def test_the_error_of_a_ratio_is_what_a_higher_one_moves() -> None:
