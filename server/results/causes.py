@@ -1,6 +1,6 @@
 """Deaths by cause of a population-year, and how a reader chooses to see them."""
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import ClassVar, Self
 
@@ -62,22 +62,6 @@ class Causes:
     shifts: Array | None = None  # [ratio, cause, age]
     of_kind: Mapping[str, float] = field(default_factory=dict)  # deaths as delivered, by kind
     withheld: NDArray[np.bool_] | None = None  # [cause, age], where some only stand in; None: none
-
-    @classmethod
-    def stack(cls, several: Sequence[Self]) -> CauseCounts:
-        """The counts of several population-years on one grid as one batch, a new first axis."""
-        deaths = np.stack([one.counts.deaths for one in several])
-        if all(one.counts.counted is None for one in several):
-            return CauseCounts(deaths)
-        return CauseCounts(
-            deaths,
-            np.stack(
-                [
-                    one.counts.deaths if one.counts.counted is None else one.counts.counted
-                    for one in several
-                ]
-            ),
-        )
 
 
 @dataclass(frozen=True, slots=True)

@@ -148,8 +148,6 @@ def test_all_population_years_of_one_question_have_the_same_rows() -> None:
     assert several[1] is not None
     assert several[0].list == several[1].list
     assert several[1].counts.deaths[-1].tolist() == [0.0] * 4
-    stacked = Causes.stack([several[0], several[1]])
-    assert_array_equal(stacked.deaths[1], several[1].counts.deaths)
 
 
 def test_ill_defined_deaths_go_to_natural_causes_and_are_counted_where_they_were() -> None:
