@@ -21,7 +21,7 @@ from engine.ages import AgeGrid, Array
 from server.disclosure.blocks import SEXES, Block, Bools, block
 from server.disclosure.closing import close
 from server.disclosure.equations import equations
-from server.disclosure.history import State, fresh_of, withheld_before
+from server.disclosure.history import State, as_block, fresh_of, withheld_before
 from server.disclosure.showing import shown
 from server.disclosure.standing_in import stand_ins
 from server.disclosure.withholding import by_schedule, kept_secret, small
@@ -105,6 +105,7 @@ class Past:
     table: Table
     mask: Mask
     total: Mapping[str, Array]  # deaths of all causes as they are shown, by sex: [age]
+    whole_grid: AgeGrid  # the ages that all deaths are shown by
 
     @property
     def state(self) -> State:
@@ -120,6 +121,17 @@ class Past:
         )
 
 
+def joined(one: Past) -> tuple[Block, Bools]:
+    """The table as a block, of which the deaths of all causes are those of the area."""
+    of, hidden = as_block(one.state, one.period, "deaths")
+
+    def name(code: str) -> str:
+        return one.area if code == ALL else f"cause {code}" if code else ""
+
+    named = tuple(replace(it, code=name(it.code), parent=name(it.parent)) for it in of.areas)
+    return replace(of, areas=named), hidden
+
+
 def past(listed: Sequence[Cause], area: str, period: str, cells: Cells, mask: Mask) -> Past | None:
     """What an edition has of the causes of an area and year; None where it has none."""
     made = table(listed, area, period, cells)
@@ -127,6 +139,7 @@ def past(listed: Sequence[Cause], area: str, period: str, cells: Cells, mask: Ma
         return None
     hidden: dict[Key, Hidden] = {}
     total: dict[str, Array] = {}
+    grids: list[AgeGrid] = []
     for code, sex, _period, measure, _none in made.cells:
         key = Key(area, sex, period, measure, "" if code == ALL else code)
         if measure in _MEASURES and key in mask:
@@ -134,7 +147,8 @@ def past(listed: Sequence[Cause], area: str, period: str, cells: Cells, mask: Ma
         if (code, measure) == (ALL, "deaths"):
             given = shown(cells[key], mask[key]) if key in mask else cells[key]
             total[sex] = _on(made.grid, given)
-    return Past(area, period, made, hidden, total)
+            grids.append(given.grid)
+    return Past(area, period, made, hidden, total, reduce(AgeGrid.common, grids))
 
 
 @dataclass(frozen=True, slots=True)

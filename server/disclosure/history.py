@@ -110,18 +110,22 @@ def _then(of: Block, rows: Ints, vector: Vector) -> Array:
 def leaking(of: Block, hidden: Bools, period: str, measure: str, states: Sequence[State]) -> int:
     """How many withheld numbers all states together fix that those before did not. A number
     that two editions share is taken to be known to be the same."""
-    before = []
-    for state in states:
-        then = block(state.areas, period, measure, state.cells)
-        before.append((then, _hidden(then, period, measure, state)))
-    return len(_told([*before, (of, hidden)]) - _told(before))
+    before = [as_block(state, period, measure) for state in states]
+    return len(told([*before, (of, hidden)]) - told(before))
+
+
+def as_block(state: State, period: str, measure: str) -> tuple[Block, Bools]:
+    """What an edition had of a period and measure, and what of it was withheld."""
+    then = block(state.areas, period, measure, state.cells)
+    return then, _hidden(then, period, measure, state)
 
 
 Name = tuple[str, int, int, int, float]  # area, start, stop, sex and number
 
 
-def _told(shown: Sequence[tuple[Block, Bools]]) -> set[Name]:
-    """Withheld numbers that what is shown of these blocks fixes."""
+def told(shown: Sequence[tuple[Block, Bools]]) -> set[Name]:
+    """Withheld numbers that what is shown of these blocks fixes. A number of the same area, sex and
+    age is one unknown wherever it stands."""
     unknowns: dict[Name, int] = {}
     known: set[int] = set()
     placed: list[tuple[csr_array, list[int]]] = []

@@ -4,9 +4,9 @@ from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 
 from engine.ages import AgeGrid
-from server.disclosure.causes import Past, of_causes, past
+from server.disclosure.causes import Past, joined, of_causes, past
 from server.disclosure.coarsening import coarsened
-from server.disclosure.history import State
+from server.disclosure.history import State, as_block, told
 from server.disclosure.rounding import Rounding, on_coarser, rounding
 from server.disclosure.withholding import of_period
 from server.store.records import Area, Cause, Hidden, Key, Mask, Terms, Unprotected, Vector
@@ -81,24 +81,36 @@ def mask(
 
 def _with_causes(own: Content, earlier: Sequence[Content], otherwise: Sequence[Content]) -> Made:
     """Of each area that is part of none, by year. Rounded counts have none by cause: these would
-    have to add up to them."""
+    have to add up to them. Where with those shown before they would tell a withheld number, of
+    causes or of areas, none are shown."""
     found, left, shown = dict(own.mask), dict(own.unprotected), set()
-    before, beside = ([_Tables(one) for one in ones] for ones in (earlier, otherwise))
-    tables = _Tables(own) if own.terms.causes == "whole" else None
-    for place in tables.places if tables else ():
-        way = way_of(place[1], own.terms, otherwise)
-        now = tables.of(place, own.mask) if tables else None
-        if way.base or now is None:
+    now, before, beside = ([_Tables(one) for one in ones] for ones in ((own,), earlier, otherwise))
+    for place in now[0].places if own.terms.causes == "whole" else ():
+        way, table = way_of(place[1], own.terms, otherwise), now[0].of(place, own.mask)
+        if way.base or table is None:
             continue
-        past, others = ([p for one in ones if (p := one.shown(place))] for ones in (before, beside))
-        made = of_causes(now, way, past, others)
+        ours, others = ([p for one in ones if (p := one.shown(place))] for ones in (before, beside))
+        made = of_causes(table, way, ours, others)
+        mine = now[0].of(place, {**own.mask, **made.mask})
+        all_of_them = [one.total(place[1]) for one in (*before, *beside, *now)]
+        if mine and (ours or others) and _tells(mine, [*ours, *others], all_of_them):
+            continue
         found |= made.mask
         shown.add(place)
-        rest = left.get(place[1], Unprotected())
-        also = made.unprotected
+        rest, also = left.get(place[1], Unprotected()), made.unprotected
         if also != Unprotected():
             left[place[1]] = Unprotected(rest.exposed + also.exposed, rest.narrow + also.narrow)
     return Made(found, left, frozenset(shown))
+
+
+def _tells(now: Past, shown: Sequence[Past], totals: Sequence[State]) -> bool:
+    """Whether causes, with all else that is shown of a year, fix more than all deaths do and than
+    the causes shown before did. (The last of `totals` is of now.)"""
+    if any(one.table.grid != one.whole_grid for one in (now, *shown)):
+        return True  # the ages do not allow to set them beside all deaths
+    blocks = [as_block(one, now.period, "deaths") for one in totals]
+    causes = [joined(one) for one in shown]
+    return bool(told([*blocks, *causes, joined(now)]) - told(blocks) - told(blocks[:-1] + causes))
 
 
 class _Tables:
@@ -106,6 +118,7 @@ class _Tables:
 
     def __init__(self, content: Content) -> None:
         self.content = content
+        self.periods: dict[str, dict[Key, Vector]] | None = None
         tops = {area.code for area in content.areas if not area.parent}
         grouped: dict[Place, dict[Key, Vector]] = {}
         if any(key.cause for key in content.cells):
@@ -122,6 +135,13 @@ class _Tables:
 
     def of(self, place: Place, mask: Mask) -> Past | None:
         return past(self.content.causes, *place, self.cells.get(place, {}), mask)
+
+    def total(self, period: str) -> State:
+        """Counts of all areas, on the ages they are shown by."""
+        if self.periods is None:
+            self.periods = _periods(self.content.cells)
+        hidden = _hidden_periods(self.content.mask).get(period, {})
+        return _on_shown_ages(self.content.areas, self.periods.get(period, {}), hidden)
 
     def shown(self, place: Place) -> Past | None:
         """The table, where it was shown."""
@@ -208,24 +228,26 @@ def _distinct(states: Sequence[State]) -> list[State]:
 
 
 def _shown_otherwise(contents: Sequence[Content]) -> dict[str, list[State]]:
-    """Each period as it was shown, on the ages it was shown by; the same state once."""
+    """Each period as it was shown; the same state once."""
     found: dict[str, list[State]] = {}
     for one in contents:
-        cells = dict(one.cells)
-        for key, hidden in one.mask.items():
-            if key in cells and hidden.starts:
-                grid, vector = AgeGrid(hidden.starts), cells[key]
-                values = vector.grid.regroup(vector.values, grid)
-                cells[key] = replace(vector, grid=grid, values=values)
         masks = _hidden_periods(one.mask)
-        for period, part in _periods(cells).items():
-            state, kept = (
-                State(one.areas, part, masks.get(period, {})),
-                found.setdefault(period, []),
-            )
+        for period, part in _periods(one.cells).items():
+            state = _on_shown_ages(one.areas, part, masks.get(period, {}))
+            kept = found.setdefault(period, [])
             if not any(
                 state.mask == other.mask and state.same_as(other.areas, other.cells)
                 for other in kept
             ):
                 kept.append(state)
     return found
+
+
+def _on_shown_ages(areas: tuple[Area, ...], part: Cells, hidden: Mask) -> State:
+    cells = dict(part)
+    for key, one in hidden.items():
+        if key in cells and one.starts:
+            grid, vector = AgeGrid(one.starts), cells[key]
+            values = vector.grid.regroup(vector.values, grid)
+            cells[key] = replace(vector, grid=grid, values=values)
+    return State(areas, cells, hidden)
