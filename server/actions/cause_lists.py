@@ -3,6 +3,7 @@
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 
+from server.results.causes import NOT_STATED
 from server.store.causes import in_tree_order, leaves
 from server.store.errors import Refused
 from server.store.records import Cause, Key
@@ -32,10 +33,11 @@ def laid_over(
     """The list handed in takes the place of the base's. A list of which nothing is counted any
     longer ends; `held` are the schedules of the base, `gone` those that it loses.
 
-    Raises: Refused where the list forms no tree, or counts that stay are of causes that are not, or
-    no longer without parts, in the list handed in.
+    Raises: Refused where the list forms no tree, has the code of no stated cause, or counts that
+    stay are of causes that are not, or no longer without parts, in the list handed in.
     """
     listed = in_tree_order(handed)
+    _require_free(listed)
     used = {key.cause for key in new if key.cause}
     if unknown := used - _codes((*leaves(listed), *leaves(base))):
         raise ValueError(f"schedules of causes that no list has, or has parts of: {unknown}")
@@ -53,6 +55,16 @@ def laid_over(
 
 def _codes(causes: Iterable[Cause]) -> frozenset[str]:
     return frozenset(cause.code for cause in causes)
+
+
+def _require_free(listed: tuple[Cause, ...]) -> None:
+    if NOT_STATED.code in _codes(listed):
+        raise Refused(
+            "The list of causes has the code {code}, under which deaths of no stated cause are "
+            "shown: all deaths less those of the causes. Give that cause another code, or take it "
+            "out of the list and hand in such deaths without a cause.",
+            code=NOT_STATED.code,
+        )
 
 
 def _require_kept(stay: set[str], listed: tuple[Cause, ...]) -> None:

@@ -282,3 +282,9 @@ def test_a_list_that_does_not_count_what_stays_is_refused(listed: tuple[Cause, .
 def test_counts_of_a_cause_that_is_not_listed_are_a_fault_of_the_program() -> None:
     with pytest.raises(ValueError, match=r"no list has, or has parts of: \{'body'\}"):
         list_laid_over(LIST, (), new=[HEART._replace(cause="body")], gone=frozenset(), held=tuple)
+
+
+def test_the_code_of_no_stated_cause_is_taken() -> None:
+    own = (*LIST, Cause("not-stated", "Not stated", kind="ill_defined"))
+    with pytest.raises(Refused, match="The list of causes has the code not-stated, under which"):
+        list_laid_over(own, (), new=(), gone=frozenset(), held=tuple)
