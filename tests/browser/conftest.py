@@ -11,6 +11,7 @@ from playwright.sync_api import Browser, sync_playwright
 
 from tests.browser.site import Site
 from tests.browser.visitor import Visitor, enter
+from tests.conftest import DATABASE
 
 ARGUMENTS = [
     "--no-sandbox",
@@ -62,11 +63,19 @@ def demo_site(demonstration: Path, tmp_path_factory: pytest.TempPathFactory) -> 
 
 
 @pytest.fixture
-def empty_site(tmp_path: Path) -> Iterator[Site]:
+def empty_site(sqlite_template: Path, tmp_path: Path) -> Iterator[Site]:
     """A site on an empty database, for one test."""
+    shutil.copy(sqlite_template, tmp_path / DATABASE)
     site = Site(tmp_path)
-    made = site.command("database")
-    assert made.returncode == 0, made.stdout + made.stderr
+    site.start()
+    yield site
+    site.stop()
+
+
+@pytest.fixture
+def own_demo_site(demonstration: Path, tmp_path: Path) -> Iterator[Site]:
+    """The demonstration for one test, which may change it."""
+    site = Site(shutil.copytree(demonstration, tmp_path / "data"))
     site.start()
     yield site
     site.stop()

@@ -152,27 +152,26 @@ def test_the_demonstration_is_loaded_by_one_button(empty_site: Site, visit: Ente
     visitor = visit(empty_site)
     page = visitor.goto("/")
     page.get_by_role("button", name="Load the demonstration").click()
-    page.wait_for_url("**/c/quillmere/3/contents**")
+    page.wait_for_url("**/c/quillmere/3/contents**", timeout=60_000)  # it is built
     assert "Quillmere" in page.locator("main").inner_text()
     look(visitor, scripts=True)
 
 
-def test_an_edition_is_withdrawn_and_reinstated(empty_site: Site, visit: Enter) -> None:
-    assert empty_site.command("demo", "--load-only").returncode == 0
-    visitor = visit(empty_site)
+def test_an_edition_is_withdrawn_and_reinstated(own_demo_site: Site, visit: Enter) -> None:
+    visitor = visit(own_demo_site)
     page = visitor.goto("/c/quillmere/3/contents")
     page.get_by_label("Why, in a sentence").fill("A file was sent twice.")
     page.get_by_role("button", name="Withdraw").click()
     page.wait_for_load_state("load")
     assert "A file was sent twice." in page.locator("main").inner_text()
-    page.goto(empty_site.address + "/c/quillmere/trend")
+    page.goto(own_demo_site.address + "/c/quillmere/trend")
     page.wait_for_url("**/c/quillmere/2/trend**")  # the newest that stands
-    page.goto(empty_site.address + "/c/quillmere/3/trend?of=e0")
+    page.goto(own_demo_site.address + "/c/quillmere/3/trend?of=e0")
     visitor.drawn()
     assert "withdrawn" in page.locator("#notices").inner_text().lower()
     look(visitor, scripts=True)
-    page.goto(empty_site.address + "/c/quillmere/3/contents")
+    page.goto(own_demo_site.address + "/c/quillmere/3/contents")
     page.get_by_label("Why, in a sentence").fill("It was right after all.")
     page.get_by_role("button", name="Reinstate").click()
-    page.goto(empty_site.address + "/c/quillmere/trend")
+    page.goto(own_demo_site.address + "/c/quillmere/trend")
     page.wait_for_url("**/c/quillmere/3/trend**")

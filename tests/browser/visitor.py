@@ -57,7 +57,7 @@ class Visitor:
     def drawn(self) -> None:
         """Wait until every plot on the page has its picture."""
         self.page.wait_for_load_state("load")
-        for _ in range(100):
+        for _ in range(600):
             if self.page.evaluate(
                 "() => [...document.querySelectorAll('.plot')]"
                 ".every(plot => plot.querySelector('svg.main-svg'))"
@@ -76,7 +76,7 @@ def enter(browser: Browser, address: str, *, size: str = "wide", scripts: bool =
         accept_downloads=True,
         reduced_motion="reduce",
     )
-    context.set_default_timeout(15_000)
+    context.set_default_timeout(60_000)  # a busy machine is slow, not wrong
     visitor = Visitor(address, context, context.new_page())
     context.expose_binding("reportViolation", visitor.violated)
     if scripts:

@@ -23,6 +23,7 @@ PLACES = [
     for number, one in enumerate(sample())
     for twin in (("", "json", "xlsx") if number == 0 else ("", "json"))
 ]
+PAGES = [address(quillmere.CODE, EDITION, one) for one in sample()]
 PLAIN = ("/collections", "/collections.json", "/methods", "/c/quillmere/editions.xlsx")
 
 
@@ -63,15 +64,15 @@ def test_two_processes_answer_head_and_get_with_one_tag(two_servers: list[str]) 
 def test_no_two_addresses_share_a_tag(island: Path) -> None:
     with reading(island) as reader:
         tags = [reader.head(place).headers["etag"] for place in PLACES]
-        full = [reader.head(place.replace("released", "full")).headers["etag"] for place in PLACES]
-    assert len({*tags, *full}) == 2 * len(PLACES)
+        full = [reader.head(place.replace("released", "full")).headers["etag"] for place in PAGES]
+    assert len({*tags, *full}) == len(PLACES) + len(PAGES)
 
 
 def test_a_withdrawal_changes_the_tag_and_a_known_page_is_sent_again(
     copied: Callable[[], Path],
 ) -> None:
     with reading(copied()) as reader:
-        before = {place: reader.head(place).headers["etag"] for place in PLACES}
+        before = {place: reader.head(place).headers["etag"] for place in PAGES}
         withdraw(reader, EDITION, "Sent by mistake.")
         for place, tag in before.items():
             answer = reader.get(place, headers={"If-None-Match": tag})
