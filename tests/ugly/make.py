@@ -307,7 +307,9 @@ def causes(found: Truth) -> bytes:
     """Deaths by code of ICD-10 in several ways of writing it, sums of chapters and of all causes
     among the rows, semicolons, decimal commas, and no row where nobody died."""
     rows: list[Row] = [("Gestorbene nach Todesursache, Geschlecht und Alter", *[""] * 5)]
-    rows.append(("Bundesland", "Jahr", "Geschlecht", "Alter", "Todesursache (ICD-10)", "Gestorbene"))
+    rows.append(
+        ("Bundesland", "Jahr", "Geschlecht", "Alter", "Todesursache (ICD-10)", "Gestorbene")
+    )
     for area, name in AREAS.items():
         for year in YEARS:
             for sex, word in (("f", "weiblich"), ("m", "männlich")):
