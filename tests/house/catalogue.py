@@ -17,7 +17,9 @@ from jinja2 import nodes
 from engine.causes.registry import NUMBERS
 from engine.indicators import GROUPS
 from engine.settings import SETTINGS
+from server.intake.causes.lists import BUILT_IN as CAUSE_LISTS
 from server.intake.checks import CHAPTERS, KINDS
+from server.results.targets import TARGETS
 from server.sentences.languages import texts
 from server.sentences.names import brief
 
@@ -91,8 +93,19 @@ def _of_template(source: str) -> Iterator[str]:
                     yield argument.value
 
 
+REGISTRIES = (
+    GROUPS,
+    NUMBERS.values(),
+    SETTINGS.values(),
+    CHAPTERS,
+    KINDS.values(),
+    CAUSE_LISTS.values(),
+    TARGETS,
+)
+
+
 def _of_registries() -> Iterator[str]:
-    for registry in (GROUPS, NUMBERS.values(), SETTINGS.values(), CHAPTERS, KINDS.values()):
+    for registry in REGISTRIES:
         yield from _read(registry)
     for settings in SETTINGS.values():
         yield from _read(settings.stages)
