@@ -122,7 +122,8 @@ def _editions(
 ) -> contents_tables.Listing:
     collection = heading.collection
     all_ = editions.listing(session, collection.code)
-    table = contents_tables.editions(collection, all_, heading.newest, erased)
+    hidden = heading.policy is not None
+    table = contents_tables.editions(collection, all_, heading.newest, erased, hidden=hidden)
     return contents_tables.Listing((table,), contents_tables.editions_twins(collection.code))
 
 

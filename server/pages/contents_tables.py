@@ -109,8 +109,11 @@ def editions(
     all_: Iterable[Edition],
     newest: int | None,
     erased: Mapping[int, tuple[UploadFile, ...]],
+    *,
+    hidden: bool,
 ) -> Table:
-    """All editions of a collection, newest first. It changes as editions are made and withdrawn."""
+    """All editions of a collection, newest first. It changes as editions are made and withdrawn.
+    `hidden`: some counts are, by a policy."""
     return Table(
         "editions",
         _("Editions of {collection}", collection=collection.name),
@@ -129,7 +132,7 @@ def editions(
                     day(edition.made),
                     edition.by,
                     edition.note,
-                    did(edition, erased=edition.number in erased),
+                    did(edition, erased=edition.number in erased, hidden=hidden),
                     say.standing(
                         stands=edition.number == newest,
                         withdrawn=edition.events[-1].at if edition.withdrawn else None,
@@ -146,9 +149,10 @@ def editions(
     )
 
 
-def did(edition: Edition, *, erased: bool) -> str:
+def did(edition: Edition, *, erased: bool, hidden: bool) -> str:
     """What it did to the edition it was built on, and whether its bytes are still kept."""
     taking = edition.taking
     took = taking_say.taken(taking.areas, taking.periods, taking.gives_way)
-    said = taking_say.did(asdict(edition.effect) if edition.effect else None, took)
+    effect = asdict(edition.effect) if edition.effect else None
+    said = taking_say.did(effect, took, hidden=hidden)
     return _("{said}; bytes erased", said=said) if erased else said

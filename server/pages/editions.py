@@ -8,7 +8,7 @@ from server.pages.page import Frame, Page
 from server.sentences import contents as say
 from server.sentences.pieces import Piece, phrase
 from server.sentences.text import _
-from server.store import collections, editions, uploads
+from server.store import collections, editions, policies, uploads
 from server.store.connect import Session
 
 
@@ -24,6 +24,7 @@ def build(session: Session, code: str) -> EditionsPage:
     collection = collections.find(session, code)
     all_ = editions.listing(session, code)
     erased = uploads.erasures(session, code)
+    hidden = policies.newest(session, code) is not None
     standing = next((one.number for one in all_ if not one.withdrawn), None)
     return EditionsPage(
         frame=Frame(
@@ -38,7 +39,7 @@ def build(session: Session, code: str) -> EditionsPage:
             nav="collections",
         ),
         answer=say.editions(collection.name, len(all_), standing),
-        tables=(contents_tables.editions(collection, all_, standing, erased),),
+        tables=(contents_tables.editions(collection, all_, standing, erased, hidden=hidden),),
         twins=contents_tables.editions_twins(code),
         collection=code,
     )

@@ -118,9 +118,15 @@ def _dropped(count: int) -> str:
     )
 
 
-def did(effect: Counts | None, took: str) -> str:
-    """What an edition did to the one before it, in the list of editions."""
-    said = _did(effect) if effect else _("not counted")
+def did(effect: Counts | None, took: str, *, hidden: bool) -> str:
+    """What an edition did to the one before it, in the list of editions. Where counts are `hidden`
+    by a policy it is not said how many changed: a withheld one may be the only one that did."""
+    told = effect
+    if effect and hidden:
+        told = {kind: n if kind in ("added", "dropped") else 0 for kind, n in effect.items()}
+    said = _did(told) if told else _("not counted")
+    if told and hidden and not any(told.values()):
+        said = _("none new or dropped")
     return f"{said}; {took}" if took else said
 
 

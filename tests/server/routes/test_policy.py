@@ -6,6 +6,7 @@ from starlette.testclient import TestClient
 
 from server.accounts.viewer import Right, Viewer
 from server.routes.asking import viewer
+from server.sentences.taking import did
 
 PLACE = "/c/isle/policy"
 TERMS = {"threshold": "5", "persons": "0", "coarse_below": "0", "zeros": "shown"}
@@ -109,3 +110,18 @@ def test_only_those_who_set_policies_may_try_them(isle: FastAPI, reader: TestCli
     assert tried.status_code == 403
     assert "counts" not in tried.text.partition("<main")[2]
     assert reader.get(PLACE).status_code == 200
+
+
+def test_it_is_not_said_how_many_counts_an_edition_changed() -> None:
+    """One of them may be withheld."""
+    moved = {"added": 0, "changed": 3, "restated": 1, "dropped": 0}
+    assert did(moved, "", hidden=False) == "3 changed and 1 under another status"
+    assert did(moved, "", hidden=True) == "none new or dropped"
+    assert did(moved | {"added": 2}, "in part", hidden=True) == "2 new; in part"
+
+
+def test_the_list_of_editions_asks_for_the_policy(reader: TestClient) -> None:
+    counted = reader.get("/c/isle/editions.json").json()["figures"]["editions"]["rows"][0]["did"]
+    assert "new" in counted
+    reader.post(PLACE, data=TERMS | {"note": "As decided."})
+    assert reader.get("/c/isle/editions").status_code == 200
