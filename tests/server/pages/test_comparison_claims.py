@@ -236,3 +236,18 @@ def test_the_tests_see_both_clear_and_unclear_ones() -> None:
     assert "By cause" in plain(comparison_causes.sentence(clearly))
     assert comparison_even.sentence(clearly)
     assert "farthest at" in drawn(clearly)["ratios"].finding
+
+
+@pytest.mark.parametrize("seed", [3, 4, 7])
+def test_a_cause_that_is_large_but_not_clear_is_not_named(seed: int) -> None:
+    this = gompertz_panel(people=4e5, seed=seed, level=2.2e-5)
+    that = gompertz_panel(people=4e5, seed=50 + seed)
+    causes = parted(this, 4, seed=seed), parted(that, 4, seed=seed + 7)
+    found = comparison_of(this, that, causes=causes)
+    of, said = found.explained.causes, plain(comparison_causes.sentence(found))
+    assert of is not None
+    large = np.sign(of.difference) * of.by_cause >= 0.1 * abs(of.difference)
+    clear_ = (of.cause_low > 0) | (of.cause_high < 0)
+    assert (large & ~clear_).any()
+    named = [f"cause {one.label[-1]} (" in said for one in of.list]
+    assert named == (large & clear_).tolist()
