@@ -274,11 +274,11 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
     """Where to go from here: the same people earlier, the other sex, the whole, the years."""
     heading, held, asked = found.heading, found.holdings, found.question
     of, links, years = found.of, [], found.settings.years
+    where = (heading.collection.code, heading.edition.number)
 
     def compared(that: PopulationYear, words: str) -> None:
         if that != of and held.all_of(that, years):
             question = ComparisonQuestion(of, that, "e0", asked.figures, asked.settings, "rest")
-            where = (heading.collection.code, heading.edition.number)
             links.append(Piece(words, address(*where, question.simplified())))
 
     if found.before:
@@ -307,12 +307,10 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
     )
     course = Piece(
         _("Life expectancy from {first} to {last}", first=trend.first, last=trend.last),
-        address(heading.collection.code, heading.edition.number, trend),
+        address(*where, trend),
     )
     curves = CurvesQuestion(of, asked.figures, asked.settings)
-    behind = Piece(
-        curves_say.question(), address(heading.collection.code, heading.edition.number, curves)
-    )
+    behind = Piece(curves_say.question(), address(*where, curves))
     change = ways(heading, of, asked.figures, asked.settings)
     shown = doorway(heading, held, of, asked.figures, asked.settings)
     also = (*shown, *_why(found), *_in_full(found))
