@@ -15,6 +15,7 @@ MOST_COLUMNS = 2_000  # of a table
 MOST_MERGED = 20_000
 LISTED = 100  # cells that are named one by one
 MOST_PIECES = 1_000  # of a text, each of some thousand signs
+KEPT = 10_000  # texts of which it is known how they are written
 MARKED = 2_000  # different texts that may be numbers
 _MAY_BE_NUMBER = re.compile(r"[+-]?\d[\d.,' \u00a0\u2009\u202f\u2019]*")
 _REFERENCE = re.compile(r"([A-Z]{1,3})(\d{1,7})")
@@ -138,41 +139,72 @@ class _Reader:
         self._row, self._hidden, self._column = 0, False, 0
         self._cells: list[str] = []
         self._kind, self._style, self._formula = "", 0, False
-        self._value: list[str] = []
+        self._value, self._pieces = "", 0
         self._listens = self._inside = False  # to a value; within phonetic text
         self._size = 0
-        self._begin: dict[str, Callable[[dict[str, str]], None]] = {
+        self._digits = ""  # of the row, as references of its cells end
+        self._places: dict[str, int] = {}  # columns by their letters
+        self._written: dict[str, str] = {}  # texts of cells' own, as they are written
+        self._seldom: dict[str, Callable[[dict[str, str]], None]] = {
             "row": self._begin_row,
-            "c": self._begin_cell,
             "f": self._begin_formula,
-            "v": self._begin_value,
-            "t": self._begin_value,
             "rPh": self._begin_spoken,
             "mergeCell": self._merge,
             "col": self._columns,
         }
 
+    # begin, end and text are called five times a cell, a million times over: no call that can be
+    # spared is made in them, and what comes most often is asked first
     def begin(self, tag: str, given: dict[str, str]) -> None:
-        act = self._begin.get(tag) or self._begin.get(local(tag))
-        if act:
+        if ":" in tag:
+            tag = local(tag)
+        if tag == "v" or tag == "t":
+            self._listens = not self._inside
+        elif tag == "c":
+            reference = given.get("r")
+            column = self._column + 1
+            if reference:
+                name = reference.removesuffix(self._digits)
+                column = self._places.get(name) or self._placed(reference)
+            if not self._column < column <= LAST_COLUMN:
+                raise Broken(Text("cells out of order"))
+            self._column = column
+            self._kind, style = given.get("t", "n"), given.get("s")
+            self._style = int(style) if style else 0
+            self._formula, self._value = False, ""
+        elif act := self._seldom.get(tag):
             act(given)
 
     def end(self, tag: str) -> None:
-        name = tag if ":" not in tag else local(tag)
-        if name in ("v", "t"):
+        if ":" in tag:
+            tag = local(tag)
+        if tag == "v" or tag == "t":
             self._listens = False
-        elif name == "c":
-            self._end_cell()
-        elif name == "row":
+        elif tag == "c":
+            if self._value or self._formula:
+                self._end_cell()
+        elif tag == "row":
             self._end_row()
-        elif name == "rPh":
+        elif tag == "rPh":
             self._inside = False
 
     def text(self, piece: str) -> None:
-        if self._listens and not self._inside:
-            self._value.append(piece)
-            if len(self._value) > MOST_PIECES:
+        if self._listens:
+            if not self._value:
+                self._value, self._pieces = piece, 1
+                return
+            self._value += piece
+            self._pieces += 1
+            if self._pieces > MOST_PIECES:
                 raise TooLarge
+
+    def _placed(self, reference: str) -> int:
+        """The column of a cell whose letters come for the first time. Raises: Broken."""
+        column = place(reference)[1]
+        name = reference.removesuffix(self._digits)
+        if name.isalpha():  # else it names another row than the one it stands in
+            self._places[name] = column
+        return column
 
     def _begin_row(self, given: dict[str, str]) -> None:
         before, number = self._row, given.get("r")
@@ -180,22 +212,10 @@ class _Reader:
         if not before < self._row <= LAST_ROW:
             raise Broken(Text("rows out of order"))
         self._hidden = given.get("hidden") in ("1", "true")
-        self._column, self._cells = 0, []
-
-    def _begin_cell(self, given: dict[str, str]) -> None:
-        reference = given.get("r")
-        column = place(reference)[1] if reference else self._column + 1
-        if not self._column < column <= LAST_COLUMN:
-            raise Broken(Text("cells out of order"))
-        self._column = column
-        self._kind, self._style = given.get("t", "n"), int(given.get("s", "0"))
-        self._formula, self._value = False, []
+        self._column, self._cells, self._digits = 0, [], str(self._row)
 
     def _begin_formula(self, _: dict[str, str]) -> None:
         self._formula = True
-
-    def _begin_value(self, _: dict[str, str]) -> None:
-        self._listens = True
 
     def _begin_spoken(self, _: dict[str, str]) -> None:
         self._inside = True
@@ -212,7 +232,7 @@ class _Reader:
         self.sheet.merged.append(Merged(*place(first), *place(last or first)))
 
     def _end_cell(self) -> None:
-        value, kind = "".join(self._value), self._kind
+        value, kind = self._value, self._kind
         if self._formula:
             self._note_formula(kept=bool(value) or kind == "str")
         if not value:
@@ -227,14 +247,22 @@ class _Reader:
         elif kind == "b":
             value = "TRUE" if value == "1" else "FALSE"
         elif kind in ("str", "inlineStr"):
-            value = written(value)
-            if len(self.sheet.marked) < MARKED and may_be_number(value):
-                self.sheet.marked[value] = None
+            value = self._written.get(value) or self._text(value)
         if value:
             if self._column > MOST_COLUMNS:
                 raise TooWide(self._row)
-            self._cells += [""] * (self._column - 1 - len(self._cells))
+            if lacking := self._column - 1 - len(self._cells):
+                self._cells += [""] * lacking
             self._cells.append(value)
+
+    def _text(self, raw: str) -> str:
+        """A text that comes for the first time, or again after many others."""
+        text = written(raw)
+        if len(self._written) < KEPT:
+            self._written[raw] = text
+        if len(self.sheet.marked) < MARKED and may_be_number(text):
+            self.sheet.marked[text] = None
+        return text
 
     def _shared(self, value: str) -> str:
         try:
