@@ -198,7 +198,7 @@ def _cautions(found: Curves) -> tuple[Caution, ...]:
             basis.few_person_years(float(panel.exposure.sum()), found.settings),
         ],
         below=[
-            basis.no_deaths(empty),
+            basis.no_deaths(empty, rounded=bool(found.loaded.rounded)),
             basis.joined([label for label, is_so in joined if is_so]),
             say.description(),
             basis.chance(),

@@ -1,6 +1,6 @@
 """What of small counts does this collection show? Its policy, its effect, and how to set it."""
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from typing import ClassVar
 
@@ -79,21 +79,29 @@ def build(session: Session, code: str, trial: Trial | None = None) -> PolicyPage
 
 
 def _effects(kept: Mapping[int, Kept]) -> Table:
+    """What the terms do to each edition; of what they do to none there is no column."""
+    withheld = any(one.cells for one in kept.values())
+    rounded = any(one.rounded for one in kept.values())
+    columns: dict[Column, Callable[[Kept], int]] = {}
+    if withheld or not rounded:
+        columns |= {
+            Column("withheld", _("counts withheld"), decimals=0): lambda one: one.cells,
+            Column("narrow", _("told apart from some small counts"), decimals=0): lambda one: (
+                one.narrow
+            ),
+            Column("exposed", _("may be worked out"), decimals=0): lambda one: one.exposed,
+        }
+    if rounded:
+        columns[Column("rounded", _("counts rounded"), decimals=0)] = lambda one: one.rounded
     return Table(
         "effect",
         _("What is withheld or rounded of each edition"),
-        (
-            Column("edition", _("edition")),
-            Column("withheld", _("counts withheld"), decimals=0),
-            Column("rounded", _("counts rounded"), decimals=0),
-            Column("narrow", _("told apart from some small counts"), decimals=0),
-            Column("exposed", _("may be worked out"), decimals=0),
-        ),
+        (Column("edition", _("edition")), *columns),
         tuple(
-            Row((number, one.cells, one.rounded, one.narrow, one.exposed))
+            Row((number, *(of(one) for of in columns.values())))
             for number, one in sorted(kept.items(), reverse=True)
         ),
-        say.about_effects(),
+        say.about_effects(narrow=withheld or not rounded),
     )
 
 
@@ -173,10 +181,10 @@ def _fields(terms: Terms) -> tuple[Field, ...]:
             _("Rounding"),
             str(terms.base),
             options=(
-                ("0", _("small counts are withheld")),
-                *((str(base), _("all counts to multiples of {base}", base=base)) for base in BASES),
+                ("0", _("none")),
+                *((str(base), _("to multiples of {base}", base=base)) for base in BASES),
             ),
-            hint=_("instead of withholding; a year keeps the way it was first shown in"),
+            hint=_("of all counts, instead of withholding; a year stays as it was first shown"),
         ),
         Field(
             "select",

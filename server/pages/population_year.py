@@ -247,7 +247,11 @@ def _cautions(found: Findings, moved_before: basis.Told) -> tuple[Caution, ...]:
         ],
         below=[
             basis.safe_side(INDICATORS["e0"], float(panel.exposure.sum())),
-            basis.no_deaths(empty, drawn=found.settings.smoothing != "none"),
+            basis.no_deaths(
+                empty,
+                drawn=found.settings.smoothing != "none",
+                rounded=bool(found.loaded.rounded),
+            ),
             basis.joined(joined),
             basis.regrouped(before.period)
             if before and before.loaded.panel.grid != panel.grid

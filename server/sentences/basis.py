@@ -142,10 +142,17 @@ def smoothed(settings: Settings) -> Told:
     )
 
 
-def no_deaths(ages: Sequence[str], *, drawn: bool = False) -> Told:
-    """That nobody died at some ages; `drawn`: a smooth curve gives rates there all the same."""
+def no_deaths(ages: Sequence[str], *, drawn: bool = False, rounded: bool = False) -> Told:
+    """That nobody died at some ages; `drawn`: a smooth curve gives rates there all the same;
+    `rounded`: some may have, since counts are rounded."""
     if not ages:
         return None
+    if rounded:
+        return _("No deaths"), _(
+            "Counts at ages {ages} are rounded to nil, so that few or none died there: their rates"
+            " are given as nil, which a ratio scale cannot show.",
+            ages=listed(ages, most=12),
+        )
     if drawn:
         return _("No deaths"), _(
             "Nobody died at ages {ages}: a rate above 0 there is the smooth curve’s.",

@@ -185,11 +185,14 @@ def about_setting() -> str:
     )
 
 
-def about_effects() -> str:
-    return _(
-        "Counts by area, sex, year and age. Those told apart from some small counts are not known,"
-        " but fewer numbers than the policy asks for are left that they might be."
+def about_effects(*, narrow: bool) -> str:
+    """`narrow`: counts that are told apart from others are among what is counted."""
+    said = _("Counts by area, sex, year and age.")
+    also = _(
+        "Those told apart from some small counts are not known, but fewer numbers than the policy"
+        " asks for are left that they might be."
     )
+    return f"{said} {also}" if narrow else said
 
 
 def about_marks() -> str:

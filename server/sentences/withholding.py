@@ -26,9 +26,10 @@ def withheld(ages: Sequence[str]) -> Told:
 def rounded(base: int, also: Told = None) -> Told:
     """A caution beside figures that rest on rounded counts; `also` withheld ones."""
     said = _(
-        "Counts are rounded at random, up or down, to multiples of {base}, and all figures are"
-        " worked out from these.",
+        "Counts are rounded at random, up or down, to multiples of {base}, so that nil may be up to"
+        " {most}; all figures are worked out from these.",
         base=base,
+        most=base - 1,
     )
     return _("Rounded"), f"{said} {also[1]}" if also else said
 
