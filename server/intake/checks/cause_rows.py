@@ -72,7 +72,9 @@ def _wrong_sex(rows: Rows) -> Iterator[Marks]:
 def _wrong_age(rows: Rows) -> Iterator[Marks]:
     first, last = ages_of(rows.items)
     cells = rows.cells
-    early = (cells.end >= 0) & ~cells.open & (cells.end < first[rows.item])
+    # beside groups with an end, a label without one is a single year of age
+    end = np.where((cells.end < 0) & (cells.end >= 0).any(), cells.start, cells.end)
+    early = (end >= 0) & ~cells.open & (end < first[rows.item])
     failing = _some(rows) & (cells.start >= 0) & (early | (cells.start > last[rows.item]))
     labels = cells.sheet.labels.get("age")
     if labels is not None:
