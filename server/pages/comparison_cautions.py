@@ -17,7 +17,6 @@ from server.sentences import basis
 from server.sentences import beside as beside_say
 from server.sentences import breaks as of_breaks
 from server.sentences import cause_contributions as causes_say
-from server.sentences import comparison as say
 from server.sentences import contributions as ages_say
 from server.sentences import overturning as over
 from server.sentences.provisional import percent
@@ -82,14 +81,14 @@ def _below(found: Comparison) -> list[basis.Told]:
     return [
         basis.safe_side(indicators.find(found.question.of), fewest),
         beside_say.printed_table(standard) if standard else None,
-        say.regrouped(
+        beside_say.regrouped(
             [_named(found, side) for side in found.regrouped],
             _("{count} groups", count=len(found.grid)),
             found.grid.open_age,
         )
         if found.regrouped
         else None,
-        say.counted_twice(tables.counted_twice(found, found.overlap))
+        beside_say.counted_twice(tables.counted_twice(found, found.overlap))
         if found.overlap and not found.same and found.kind == "plain"
         else None,
         (_("Not compared"), why_not_parted(found)) if why_not_parted(found) else None,

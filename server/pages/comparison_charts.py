@@ -20,6 +20,7 @@ from server.sentences import names
 from server.sentences.numbers import number
 from server.sentences.text import _
 
+LONG = 24  # characters of a name that has no room to the right of its curve
 LATE = 60  # the age past which a share of the difference is told
 ROLES = ("s1", "s2")
 
@@ -96,6 +97,8 @@ def _curve(
     height = RADIX * at_age(table.grid, table.lx, age)
     at = (
         At(age + 2, height, "left", 4, narrow_x=68, narrow_y=1.0 * RADIX)
+        if upper and len(label) <= LONG
+        else At(top, 0.93 * RADIX, "right")
         if upper
         else At(age, height - 0.09 * RADIX, "right", -4)
     )

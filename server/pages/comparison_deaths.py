@@ -20,6 +20,7 @@ from server.sentences.numbers import number as text
 from server.sentences.numbers import whole
 from server.sentences.text import _
 
+LONG = 16  # characters of a name that has no room beside the curve
 WIDEST = 10.0  # the ratio scale ends where the rates of one side are so many times the other's
 THIS, THAT = ("this", "s1"), ("that", "s2")
 
@@ -79,9 +80,7 @@ def _density(found: Comparison, side: Side) -> Array:
 
 
 def _line(found: Comparison, side: Side, density: Array, weight: str, role: str) -> Series:
-    both = pair(found)
-    label = both.short(both.this if side is found.this else both.that)
-    groups = found.groups
+    label, groups = _called(found, side), found.groups
     return Series(
         label,
         places(groups.mids[:-1]),
@@ -94,6 +93,11 @@ def _line(found: Comparison, side: Side, density: Array, weight: str, role: str)
     )
 
 
+def _called(found: Comparison, side: Side) -> str:
+    both = pair(found)
+    return both.short(both.this if side is found.this else both.that)
+
+
 def _label(found: Comparison, side: Side, density: Array) -> At:
     """The later deaths are named to the right of where they fall, the earlier ones to the left of
     where they rise; on the phone the former at the upper left."""
@@ -103,6 +107,8 @@ def _label(found: Comparison, side: Side, density: Array) -> At:
     half = np.nan_to_num(density) >= 0.5 * top
     if ages[0] > ages[1] or (ages[0] == ages[1] and side is found.this):
         last = int(np.flatnonzero(half)[-1])
+        if len(_called(found, side)) > LONG:
+            return At(2, 0.8 * top)
         return At(float(mids[last]), 0.55 * top, "left", 8, narrow_x=2, narrow_y=0.8 * top)
     first = int(np.flatnonzero(half[: peak + 1])[0])
     return At(float(mids[first]), 0.55 * top, "right", -8)

@@ -30,14 +30,14 @@ def named(found: Comparison, side: Side) -> say.Named:
     place = side.place
     if place.standard:
         return say.Named("p", "", "", table=_(REFERENCES[place.standard].label))
-    area = place.holdings.name(place.of.area)
+    area, brief = place.holdings.name(place.of.area), ""
     if place.rest:
-        area = _("the rest of {area}", area=area)
+        area, brief = _("the rest of {area}", area=area), _("the rest")
     if found.kind == "elsewhere":
         area = _("{area} ({collection})", area=area, collection=_collection(found, side))
     edition = place.heading.edition.number if found.kind == "revision" else 0
     years = names.years(span(place.of.period, found.settings.years))
-    return say.Named(place.of.sex, area, years, edition)
+    return say.Named(place.of.sex, area, years, edition, brief=brief)
 
 
 def _collection(found: Comparison, side: Side) -> str:

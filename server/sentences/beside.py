@@ -1,9 +1,10 @@
-"""What is said of a side that stands in another collection or edition, in a printed table, or is
-what is left of a whole."""
+"""What is said of two sides that are not counted alike: in other ages, in another collection or
+edition, in a printed table, one part of the other, or what is left of a whole."""
 
 import datetime as dt
 
 from engine.standards.remaining_years import REFERENCES
+from server.sentences import names
 from server.sentences.dates import day
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
@@ -67,4 +68,22 @@ def other_superseded(collection: str, number: int, newer: Piece) -> Sentence:
         number=str(number),
         collection=collection,
         newer=newer,
+    )
+
+
+def regrouped(sides: list[str], ages: str, open_age: int) -> tuple[str, str]:
+    return _("Age groups"), _(
+        "The two were counted in different age groups. Both are read on those they share ({ages},"
+        " open at {open_age}); regrouped for it: {sides}.",
+        ages=ages,
+        open_age=open_age,
+        sides=names.listed(sides),
+    )
+
+
+def counted_twice(which: str) -> tuple[str, str]:
+    return _("Counted in both"), _(
+        "The deaths of {which} are part of both sides. The intervals of the differences and of the"
+        " ages’ contributions count them once.",
+        which=which,
     )

@@ -33,6 +33,7 @@ class Named:
     period: str
     edition: int = 0  # told where both are one population-year of two editions
     table: str = ""  # a printed life table, which stands in the place of people
+    brief: str = ""  # the area as a label, where its name is a longer one
 
     @property
     def _table(self) -> str:
@@ -88,7 +89,7 @@ class Pair:
             return _("edition {number}", number=side.edition)
         parts = []
         if self.this.area != self.that.area:
-            parts.append(side.area)
+            parts.append(side.brief or side.area)
         if self.this.sex != self.that.sex or not parts:
             parts.append(names.sex(side.sex))
         if not self.same_year or self.that.table:
@@ -340,21 +341,3 @@ def evenness(pair: Pair, of: Answer) -> Sentence:
         ),
     }
     return phrase(texts[of.kind in HIGHER, later], **parts)
-
-
-def regrouped(sides: list[str], ages: str, open_age: int) -> tuple[str, str]:
-    return _("Age groups"), _(
-        "The two were counted in different age groups. Both are read on those they share ({ages},"
-        " open at {open_age}); regrouped for it: {sides}.",
-        ages=ages,
-        open_age=open_age,
-        sides=names.listed(sides),
-    )
-
-
-def counted_twice(which: str) -> tuple[str, str]:
-    return _("Counted in both"), _(
-        "The deaths of {which} are part of both sides. The intervals of the differences and of the"
-        " ages’ contributions count them once.",
-        which=which,
-    )
