@@ -222,7 +222,7 @@ def _charts(found: Exchange, source: str) -> tuple[Chart, ...]:
                 fewer,
                 _("deaths fewer for one month"),
                 "s1",
-                At(60, max(lower, 1.3 * low), "left", 0, narrow_x=44),
+                At(60, max(lower, 1.3 * low), "left", 0, narrow_x=48, narrow_y=1.3 * low),
             ),
             line(
                 there,
