@@ -7,8 +7,9 @@ from scipy.optimize import Bounds, LinearConstraint, milp
 
 from server.disclosure.blocks import TOTAL, Block, block
 from server.disclosure.closing import Closed, close
-from server.disclosure.equations import determined, equations
+from server.disclosure.equations import equations
 from tests.server.disclosure.counts import FLAT, TREE, drawn
+from tests.server.disclosure.elimination import determined
 
 THRESHOLD = 5
 

@@ -9,11 +9,12 @@ import pytest
 from scipy.sparse import csr_array, vstack
 
 from server.disclosure.blocks import SEXES, Block, block
-from server.disclosure.equations import determined, equations
+from server.disclosure.equations import equations
 from server.disclosure.masking import Content, Made, mask
 from server.disclosure.showing import shown
 from server.store.records import Area, Key, Mask, Terms, Vector
 from tests.server.disclosure.counts import FLAT, GRID, TREE, add, drawn
+from tests.server.disclosure.elimination import determined
 
 TERMS = Terms(threshold=5)
 Cells = dict[Key, Vector]
