@@ -21,7 +21,6 @@ from server.pages.page import Caution, Frame, Page
 from server.pages.statuses import marked, marks
 from server.pages.what_would_change import ways
 from server.pages.withholding import caution, charts_given, tables_given
-from server.results.account import AccountQuestion
 from server.results.loading import Loaded
 from server.results.population_year import Findings, population_year
 from server.results.questions import (
@@ -317,7 +316,7 @@ def _further(found: Findings) -> tuple[Sentence, ...]:
     behind = Piece(curves_say.question(), address(*where, curves))
     change = ways(heading, of, asked.figures, asked.settings)
     shown = doorway(heading, held, of, asked.figures, asked.settings)
-    also = (*shown, *_why(found), *_in_full(found))
+    also = (*shown, *models.why(found), *_in_full(found))
     return (*basis.further(tuple(links), course), change, (behind,), *also)
 
 
@@ -339,15 +338,3 @@ def _in_full(found: Findings) -> tuple[Sentence, ...]:
         ways.append(link(_("three years added up"), of, POOLED))
     policy = f"/c/{heading.collection.code}/policy"
     return withholding_say.ways(ways if found.loaded.withheld else [], policy)
-
-
-def _why(found: Findings) -> tuple[Sentence, ...]:
-    """Why life expectancy reads differently than in the edition this one was built on."""
-    heading, asked = found.heading, found.question
-    base = heading.edition.base
-    if not base:
-        return ()
-    question = AccountQuestion(found.of, base, "e0", asked.figures, asked.settings, asked.settings)
-    place = address(heading.collection.code, heading.edition.number, question)
-    words = _("Does this read differently than in edition {number}, and why?", number=base)
-    return ((Piece(words, place),),)

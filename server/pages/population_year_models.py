@@ -1,13 +1,17 @@
-"""Tables of a population-year page: another population at the highest ages, and fewer deaths."""
+"""Parts of a population-year page: another population at the highest ages, fewer deaths, and why a
+figure reads differently than before."""
 
 from engine.estimates import Estimate
 from engine.indicators import find
 from server.exports.table import Column, Gap, Row, Table
 from server.pages.cells import columns, count, number, triple, withheld
+from server.results.account import AccountQuestion
 from server.results.models import MOVED
 from server.results.population_year import Findings
+from server.results.questions import address
 from server.sentences import models as say
 from server.sentences import names
+from server.sentences.pieces import Piece, Sentence
 from server.sentences.text import _
 
 
@@ -66,3 +70,15 @@ def avoidable(found: Findings) -> Table:
     ):
         note += " " + _("Where there is no number, not even all deaths of that age make a month.")
     return Table("avoid", title, heads, rows, note)
+
+
+def why(found: Findings) -> tuple[Sentence, ...]:
+    """Why life expectancy reads differently than in the edition this one was built on."""
+    heading, asked = found.heading, found.question
+    base = heading.edition.base
+    if not base:
+        return ()
+    question = AccountQuestion(found.of, base, "e0", asked.figures, asked.settings, asked.settings)
+    place = address(heading.collection.code, heading.edition.number, question)
+    words = _("Does this read differently than in edition {number}, and why?", number=base)
+    return ((Piece(words, place),),)
