@@ -172,8 +172,8 @@ def chart(found: Gaps, source: str) -> Chart | None:
         key="gaps",
         finding=say.finding(len(clear(found))),
         unit=_(
-            "Days of life expectancy gained with the benchmark’s death rate there alone; grey: not"
-            " clear; dots alone: what chance shows on average if all areas are alike"
+            "Days of life expectancy gained with the benchmark’s death rate there alone; grey, (?):"
+            " not clear; dots alone: what chance shows on average if all areas are alike"
         ),
         source=source,
         described=_("The largest gains, one row each; the numbers are in the table of gaps."),
@@ -192,6 +192,7 @@ def chart(found: Gaps, source: str) -> Chart | None:
 
 
 def _label(place: tuple[str, str], is_clear: bool) -> str:
+    """Cause, ages and whether the gap is clear: on the phone the last two are never cut."""
     ages, cause = place
-    text = _("{ages}, {cause}", ages=ages, cause=names.inside(cause)) if cause else ages
-    return text if is_clear else _("not clear: {place}", place=text)
+    text = _("{cause}, {ages}", cause=names.inside(cause), ages=ages) if cause else ages
+    return text if is_clear else _("{place} (?)", place=text)
