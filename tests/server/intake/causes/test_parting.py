@@ -279,3 +279,25 @@ def test_what_is_by_cause_leaves_all_causes_as_they_were() -> None:
     plain = parse([deaths(rows())], warn=False)
     found = read(parted(rows()))
     same(plain, without_causes(found))
+
+
+def test_causes_stand_in_the_age_groups_that_all_causes_stand_in() -> None:
+    """People aged 45 and over are one group: so are the deaths, of each cause and of all."""
+    people = [
+        "area,year,sex,age,population",
+        *(
+            f"{area},{year},{sex},{age},9000"
+            for area, sex, year in PLACES
+            for age in ("0-14", "15-44", "45+")
+        ),
+    ]
+    mapping = replace(COLUMNS, deaths="")
+    alone = Handed("population", "people.csv", "\n".join(people).encode(), mapping)
+    table = tables(np.random.default_rng(1))
+    cells = parse([by_cause(table), alone], warn=False).cells
+    fine = read(table).cells
+    assert {key for key in cells if key.measure == "deaths"} == set(fine)
+    for key, cell in fine.items():
+        first, second, third, fourth = cell.values
+        assert cells[key].grid.starts == (0, 15, 45)
+        assert cells[key].values.tolist() == [first, second, third + fourth]
