@@ -27,7 +27,7 @@ from engine.panel import Panel
 from engine.settings import SETTINGS, Settings
 from tests.factories import GRIDS, codes, complete, gompertz_panel, panels, persons_panel
 
-MADE = [find(key) for key in ("e80", "e1", "e0_45", "yll40", "asr_by_isle.p.2010")]
+MADE = [find(key) for key in ("e80", "e1", "e0_45", "yll40", "asr75_esp2013", "asr_by_isle.p.2010")]
 EVERY = [*INDICATORS.values(), *MADE]
 SMOOTH = [one for one in EVERY if one.smooth]
 CHAINS = {key: replace(settings, draws=20) for key, settings in SETTINGS.items()}

@@ -40,6 +40,10 @@ def test_a_group_asks_one_question() -> None:
         ("l120", "Survivors to 120"),
         ("yll1", "Years of life lost before 1"),
         ("yll120", "Years of life lost before 120"),
+        (
+            "asr75_esp2013",
+            "Age-standardised death rate before 75 (European Standard Population 2013)",
+        ),
         ("asr_by_isle.f.2020", "Age-standardised death rate (ages of isle.f.2020)"),
         ("asr_by_st.ives-1.p.1998", "Age-standardised death rate (ages of st.ives-1.p.1998)"),
     ],
@@ -60,7 +64,8 @@ def test_what_is_listed_is_what_is_found() -> None:
     "key",
     ["", "e", "e-1", "e065", "e5.5", "E0", "mode ", "q0", "5q", "5q05", "05q0", "l", "l065",
      "e15_065", "yll", "yll075", "asr_by_", "asr_by_isle", "asr_by_isle.x.2020", "asr_by_isle.f.20",
-     "asr_esp2012", "e15-65", "e15_65_", "e1234", "\N{ARABIC-INDIC DIGIT FIVE}q0"],
+     "asr_esp2012", "asr75_", "asr75_esp2012", "asr075_esp2013",
+     "e15-65", "e15_65_", "e1234", "\N{ARABIC-INDIC DIGIT FIVE}q0"],
 )  # fmt: skip
 def test_an_unknown_key_is_told_the_known_ones(key: str) -> None:
     told = r"the names are e0, e65, .*5q0.* with other ages.* e80, e15_65, 40q30, l65"
