@@ -31,7 +31,7 @@ class Marks:
 def marks(held: Holdings, one: PopulationYear, loaded: Loaded) -> Marks:
     counts = status.first_of(
         status.BREAK if held.broken(one) else "",
-        status.ESTIMATED if loaded.estimated else "",
+        status.ESTIMATED if loaded.estimated or loaded.rounded else "",
         status.PROVISIONAL if loaded.status == "provisional" else "",
     )
     figures = status.first_of(counts, status.ESTIMATED if loaded.protected else "")

@@ -65,6 +65,7 @@ def test_counts_are_rounded_instead(reader: TestClient) -> None:
     deaths = [row["deaths"] for row in rows if isinstance(row.get("deaths"), float | int)]
     assert sum(count > 0 for count in deaths) > 3
     assert all(count % 5 == 0 for count in deaths)
+    assert {row["obs_status"] for row in rows if "deaths" in row} == {"E"}
 
 
 @pytest.mark.parametrize("more", [{"persons": "100"}, {"zeros": "withheld"}])
