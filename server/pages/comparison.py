@@ -56,7 +56,7 @@ class ComparisonPage(Page):
 
 def build(session: Session, heading: Heading, question: ComparisonQuestion) -> ComparisonPage:
     found = comparison(session, heading, question)
-    drawn = _charts(found, frames.source(heading))
+    drawn, made = _charts(found, frames.source(heading)), _tables(found)
     asked = charts.asked(found, question.of)
     return ComparisonPage(
         frame=_frame(found),
@@ -64,12 +64,12 @@ def build(session: Session, heading: Heading, question: ComparisonQuestion) -> C
             tables.pair(found), asked, reason(int(asked.difference.reason), found.settings)
         ),
         lead=_lead(found),
-        tables=_tables(found),
+        tables=made,
         charts=drawn,
         cautions=cautions(session, found),
         twins=frames.twins(heading, question),
         drawn=frozenset(chart.key for chart in drawn),
-        groups=tuple((table.key, table.title) for table in tables.further(found)),
+        groups=tuple((one.key, one.title) for one in made if one.key.startswith("figures-")),
         not_parted=_not_parted(found),
         kinds=() if found.same else kinds.told(found.explained.kinds),
         even=even.sentence(found),

@@ -1,5 +1,6 @@
 """What a difference is made of: ages, kinds of change, and the age composition of the people."""
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -101,7 +102,7 @@ def explain(
         unevenness=_unevenness(sides, settings) if "H" in finite else None,
         crude=_crude(sides) if "cdr" in finite else None,
         kinds=shift.shift_squeeze(sides.this, sides.that, settings, shared=sides.shared),
-        longer_even=_longer_even(sides, settings) if set(DECOMPOSED) <= finite else None,
+        longer_even=_longer_even(sides, parts, settings),
         causes=_causes(found, finite, sides, between, settings),
     )
 
@@ -153,9 +154,12 @@ def _limits(
     )
 
 
-def _longer_even(sides: Sides, settings: Settings) -> LongerEven | None:
+def _longer_even(
+    sides: Sides, parts: Mapping[str, Contribution | None], settings: Settings
+) -> LongerEven | None:
     """None where a side's threshold is not known, or the ages have no group that begins there."""
-    if sides.thresholds is None:
+    known = [parts.get(key) for key in DECOMPOSED]
+    if sides.thresholds is None or any(one is None for one in known):
         return None
     here, there = (float(one.value) for one in sides.thresholds)
     middle = (here + there) / 2
@@ -163,13 +167,15 @@ def _longer_even(sides: Sides, settings: Settings) -> LongerEven | None:
         return None
     age = min(sides.groups.starts[1:], key=lambda start: abs(start - middle))
     halves = AgeGrid((0, age))
-    found = []
-    for key in DECOMPOSED:
-        one = indicators.find(key)
-        by_age = decomposition.contributions(one, sides.this, sides.that, settings).by_age
-        ends = _limits(one, sides, halves, settings)
-        found.append(Halves(sides.this.grid.regroup(by_age, halves), *ends))
-    return LongerEven(age, (here, there), *found)
+    longer, even = (
+        Halves(
+            sides.this.grid.regroup(part.by_age, halves),
+            *_limits(indicators.find(key), sides, halves, settings),
+        )
+        for key, part in zip(DECOMPOSED, known, strict=True)
+        if part is not None
+    )
+    return LongerEven(age, (here, there), longer, even)
 
 
 def _causes(
