@@ -51,8 +51,10 @@ SLOW = {
     "tests/server/pages/test_curves.py",
     "tests/server/pages/test_population_year.py",
     "tests/server/pages/test_population_year_models.py",
+    "tests/server/pages/test_what_if.py",
     "tests/server/results/test_breaks.py",
     "tests/server/results/test_comparison.py",
+    "tests/server/results/test_what_if.py",
     "tests/server/routes/test_addresses.py",
     "tests/server/routes/test_comparison.py",
     "tests/server/routes/test_curves.py",
@@ -60,6 +62,7 @@ SLOW = {
     "tests/server/routes/test_statements.py",
     "tests/server/routes/test_strange_names.py",
     "tests/server/routes/test_uploads.py",
+    "tests/server/routes/test_what_would_change.py",
     "tests/server/store/test_histories.py",
     "tests/server/web/test_guard.py",
 }
