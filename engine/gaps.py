@@ -29,6 +29,17 @@ class Counted(NamedTuple):
 
     deaths: Array
     exposure: Array
+    counted: Array | None = None  # those in which chance is, as `CauseCounts`; None: all deaths
+
+    @property
+    def counts(self) -> Array:
+        return self.deaths if self.counted is None else self.counted
+
+    @property
+    def worth(self) -> Array:
+        """Deaths that each one counted stands for; 1 where none was."""
+        with np.errstate(all="ignore"):
+            return np.where(self.counts > 0, self.deaths / self.counts, 1.0)
 
     @property
     def rates(self) -> Array:
@@ -42,10 +53,15 @@ class Counted(NamedTuple):
         return Counted(
             np.maximum(self.deaths - other.deaths, 0.0),
             np.maximum(self.exposure - other.exposure, 0.0),
+            np.maximum(self.counts - other.counts, 0.0),
         )
 
     def plus(self, other: "Counted") -> "Counted":
-        return Counted(self.deaths + other.deaths, self.exposure + other.exposure)
+        return Counted(
+            self.deaths + other.deaths,
+            self.exposure + other.exposure,
+            self.counts + other.counts,
+        )
 
 
 def chosen(value: Array, lived: Array, least: float, *, share: float = SHARE) -> NDArray[np.bool_]:
@@ -109,12 +125,14 @@ def _either(first: NDArray[np.bool_], one: Counted, other: Counted) -> Counted:
     return Counted(
         np.where(first[..., None, None], one.deaths, other.deaths),
         np.where(first[..., None], one.exposure, other.exposure),
+        np.where(first[..., None, None], one.counts, other.counts),
     )
 
 
 def surplus(own: Counted, others: Counted) -> Array:
     """The chance of so many deaths of the own, or more, of those of both together, were the rates
-    equal: of d + D deaths each is of the own with the chance N / (N + M) of its person-years.
+    equal: of d + D deaths each is of the own with the chance N / (N + M) of its person-years. Where
+    each one counted stands for k deaths (K of the others), N / k and M / K take their place.
 
     Shape:   [..., cause, age]; the two count nobody twice.
     Missing: 1 where nobody died in the own, or either has no person-years.
@@ -124,11 +142,13 @@ def surplus(own: Counted, others: Counted) -> Array:
     >>> surplus(one, Counted(np.array([[1.0]]), np.array([100.0]))).round(6)
     array([[0.010742]])
     """
-    lived = own.exposure + others.exposure
+    # where one of the two counted none, what each stands for is that of the other
+    each = np.where(own.counts > 0, own.worth, others.worth)
+    theirs = np.where(others.counts > 0, others.worth, own.worth)
     with np.errstate(all="ignore"):
-        share = (own.exposure / lived)[..., None, :]
-        chance = betainc(own.deaths, others.deaths + 1, share)
-    known = (own.deaths > 0) & (own.exposure > 0)[..., None, :]
+        lived, beside = own.exposure[..., None, :] / each, others.exposure[..., None, :] / theirs
+        chance = betainc(own.counts, others.counts + 1, lived / (lived + beside))
+    known = (own.counts > 0) & (own.exposure > 0)[..., None, :]
     return np.where(known & (others.exposure > 0)[..., None, :], chance, 1.0)
 
 
@@ -172,12 +192,12 @@ def alike(sides: Sides, rates: Array, slopes: Array, codes: Codes) -> Alike:
     Shape:   sides [...], rates [cause, age], slopes [..., age], codes [..., 3] of the streams of
              those alone, the others and both -> as `Alike`.
     """
-    same = Sides(
-        *(
-            Counted(np.nan_to_num(rates * one.exposure[..., None, :]), one.exposure)
-            for one in (sides.alone, sides.others, sides.both)
-        )
-    )
+
+    def at_these(one: Counted) -> Counted:
+        deaths = np.nan_to_num(rates * one.exposure[..., None, :])
+        return Counted(deaths, one.exposure, deaths / one.worth)
+
+    same = Sides(*(at_these(one) for one in (sides.alone, sides.others, sides.both)))
     gains = _drawn(same, slopes, codes, ALIKE)
     cells = gains.reshape(*gains.shape[:-2], -1)
     total = cells.sum(axis=-1)
@@ -204,12 +224,12 @@ def _drawn(sides: Sides, slopes: Array, codes: Codes, purpose: str) -> Array:
     """Gains of deaths as chance might have had them, [draw, ..., cause, age]."""
     drawn = []
     for place, one in enumerate((sides.alone, sides.others, sides.both)):
-        cells = np.nan_to_num(one.deaths)
+        cells = np.nan_to_num(one.counts)
         if cells.any():
             flat = cells.reshape(*cells.shape[:-2], -1)
             streams = np.broadcast_to(codes[..., place], flat.shape[:-1])
             cells = poisson_draws(flat, streams, DRAWS, purpose).reshape(DRAWS, *cells.shape)
-        drawn.append(Counted(cells, one.exposure))
+        drawn.append(Counted(cells * one.worth, one.exposure))
     found = Sides(*drawn)
     gains = to_first_order(slopes, excess(found.own, found.benchmark))
     return np.where(np.isfinite(gains), gains, 0.0)

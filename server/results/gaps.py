@@ -228,9 +228,9 @@ def _groups(grid: AgeGrid) -> AgeGrid:
 
 
 def _counted(loaded: Loaded, grid: AgeGrid, *, causes: bool) -> gaps.Counted:
-    """Deaths in which chance is, as worth of deaths, by cause, and person-years."""
+    """Deaths by cause, those in which chance is, and person-years."""
     parts = parts_of(loaded, grid, causes=causes)
-    return gaps.Counted(parts.deaths, parts.exposure[0])
+    return gaps.Counted(parts.deaths, parts.exposure[0], parts.counts)
 
 
 def _inside(held: Holdings, area: str, members: Sequence[str]) -> tuple[str, ...]:
@@ -261,7 +261,9 @@ def _side_by_side(
 
     def stack(several: Sequence[gaps.Counted]) -> gaps.Counted:
         return gaps.Counted(
-            np.stack([one.deaths for one in several]), np.stack([one.exposure for one in several])
+            np.stack([one.deaths for one in several]),
+            np.stack([one.exposure for one in several]),
+            np.stack([one.counts for one in several]),
         )
 
     return gaps.Sides.of(
@@ -274,7 +276,7 @@ def _side_by_side(
 def _one(sides: gaps.Sides, at: int) -> gaps.Sides:
     return gaps.Sides(
         *(
-            gaps.Counted(one.deaths[at], one.exposure[at])
+            gaps.Counted(one.deaths[at], one.exposure[at], one.counts[at])
             for one in (sides.alone, sides.others, sides.both)
         )
     )
@@ -295,7 +297,7 @@ def _closing(
 ) -> WhatIf:
     """Life expectancy and H with the benchmark's rates at these cells."""
     lived = np.broadcast_to(own.benchmark.exposure, above.shape)
-    lender = Parts(own.benchmark.deaths, own.benchmark.deaths, lived, ("",) * len(above))
-    change = Change(np.ones(above.shape), Benchmark(lender, where, own.both.deaths))
+    lender = Parts(own.benchmark.deaths, own.benchmark.counts, lived, ("",) * len(above))
+    change = Change(np.ones(above.shape), Benchmark(lender, where, own.both.counts))
     read = [indicators.find(key) for key in READ]
     return what_if(read, panel, parts, change, settings)

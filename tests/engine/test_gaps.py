@@ -80,6 +80,36 @@ def test_and_seldom_in_any_other_forty() -> None:
     assert sum(some) <= 6
 
 
+def test_deaths_that_stand_for_others_name_no_more() -> None:
+    """Each one counted stands for two: chance is in half of the deaths, and names as much."""
+    member = np.arange(40) < 13
+    sides = sides_of(counted(isles(40, seed=11)), member)
+    twice = Sides(
+        *(
+            Counted(2 * one.deaths, one.exposure, one.deaths)
+            for one in (sides.alone, sides.others, sides.both)
+        )
+    )
+    assert_allclose(twice.own.worth[twice.own.counts > 0], 2.0)
+    assert_allclose(by_chance(twice), by_chance(sides), rtol=1e-9)
+    assert not clear(by_chance(twice), 0.95).any()
+    as_counted = Sides(
+        *(Counted(one.deaths, one.exposure) for one in (twice.alone, twice.others, twice.both))
+    )
+    assert clear(by_chance(as_counted), 0.95).any()
+
+
+def test_gains_drawn_anew_have_the_chance_of_those_counted() -> None:
+    """Half as many counted for the same deaths: the gaps of chance are wider by the root of 2."""
+    own = Counted(np.array([[800.0]]), np.array([2e4]))
+    other = Counted(np.array([[8000.0]]), np.array([2e5]))
+    half = (Counted(one.deaths, one.exposure, one.deaths / 2) for one in (own, other))
+    slopes, names = np.array([-100.0]), np.array(["a", "b", "c"])
+    plain = alike(Sides(own, other, nobody(own)), other.rates, slopes, names)
+    wider = alike(Sides(*half, nobody(own)), other.rates, slopes, names)
+    assert_allclose(wider.expected / plain.expected, np.sqrt(2), rtol=0.15)
+
+
 def test_a_gap_that_is_there_is_named_and_no_other_area() -> None:
     worse = np.ones((40, len(FIVE)))
     worse[7, 8:13] = 1.6
