@@ -206,7 +206,7 @@ def test_kinds_of_change_add_up_to_the_difference(page: Page) -> None:
 
 def test_how_ratios_come_about_adds_up_as_printed(page: Page) -> None:
     built = page("north.f.2013", "north.f.2010")
-    uneven, crude = (words(one) for one in built.ratios)
+    uneven, crude = words(*built.ratios), words(built.crude)
     assert "deaths cost more or fewer years" in uneven
     both = [COUNTS[f"north.f.{year}"] for year in ("2013", "2010")]
     rates = [one.deaths / one.exposure for one in both]
