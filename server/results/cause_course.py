@@ -18,7 +18,7 @@ from server.results.causes import Causes
 from server.results.holdings import Holdings
 from server.results.loading import Found, Loaded
 from server.results.questions import PopulationYear
-from server.store.causes import top_of
+from server.store.causes import lineages
 from server.store.records import Break, Cause
 
 OF = indicators.find("asr_esp2013")
@@ -52,13 +52,13 @@ def course(
 ) -> Course | None:
     """None where fewer than two years hold the cause. `leaves` are the years by the causes that
     have no parts; one that has some is their sum."""
-    top = top_of(held.causes)
+    lineage = lineages(held.causes)
     known = sorted(
         (
             (one.period, loaded, loaded.causes, places)
             for one, loaded in leaves.items()
             if isinstance(one, PopulationYear) and loaded.causes is not None
-            for places in [_places(loaded.causes, cause, top)]
+            for places in [_places(loaded.causes, cause, lineage)]
             if places
         ),
         key=lambda item: item[0],
@@ -84,9 +84,9 @@ def course(
     )
 
 
-def _places(causes: Causes, cause: Cause, top: Mapping[str, str]) -> list[int]:
+def _places(causes: Causes, cause: Cause, lineage: Mapping[str, tuple[str, ...]]) -> list[int]:
     return [
-        at for at, one in enumerate(causes.list) if cause.code in (one.code, top.get(one.code, ""))
+        at for at, one in enumerate(causes.list) if cause.code in lineage.get(one.code, (one.code,))
     ]
 
 
@@ -120,9 +120,9 @@ def _rates(own: list[Panel], settings: Settings) -> Estimate:
 def _breaks(held: Holdings, of: PopulationYear, cause: Cause) -> tuple[Break, ...]:
     """Those of this area and of every area: of all causes, of this one, of what it is part of, and
     of its parts."""
-    top = top_of(held.causes)
-    family = {one.code for one in held.causes if top[one.code] == cause.code}
-    family |= {cause.code, top.get(cause.code, "")}
+    lineage = lineages(held.causes)
+    family = {code for code, above in lineage.items() if cause.code in above}
+    family |= {cause.code, *lineage.get(cause.code, ())}
     return tuple(
         one
         for one in held.breaks

@@ -25,7 +25,7 @@ from server.results.revision import Moved, moved
 from server.results.targets import Reached, reached
 from server.sentences import names
 from server.sentences.text import _
-from server.store.causes import top_of
+from server.store.causes import lineages
 from server.store.connect import Session
 from server.store.heading import Heading
 from server.store.records import Cause
@@ -213,11 +213,11 @@ def _avoidable(
     panel: Panel, finest: Causes, held: Holdings, question: CausesQuestion, settings: Settings
 ) -> Avoidable | None:
     """Deaths before 75 of the causes named, and of those under them, together."""
-    top = top_of(held.causes)
+    lineage = lineages(held.causes)
     places = [
         at
         for at, one in enumerate(finest.list)
-        if {one.code, top.get(one.code, "")} & set(question.avoidable)
+        if set(question.avoidable).intersection(lineage.get(one.code, (one.code,)))
     ]
     if not places:
         return None

@@ -125,8 +125,3 @@ def lineages(causes: Iterable[Cause]) -> dict[str, tuple[str, ...]]:
         return (code, *lineage(above[code])) if code in above else ()
 
     return {code: lineage(code) for code in above}
-
-
-def top_of(causes: Iterable[Cause]) -> dict[str, str]:
-    """Code of every cause to that of the top of the tree that it lies under."""
-    return {code: lineage[-1] for code, lineage in lineages(causes).items()}

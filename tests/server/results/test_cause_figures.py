@@ -148,3 +148,31 @@ def test_the_finer_of_two_ranges_holds_a_code() -> None:
     assert matched((rest,), codes) == ((), (rest,))
     assert matched((Cause("part", "", ranges=("X60",)), rest), codes) == ((0,), (rest,))
     assert matched((Cause("other", "", ranges=("I60-I69",)),), codes) == ((), ())
+
+
+def test_a_cause_within_a_group_is_that_of_its_parts(session: Session) -> None:
+    """A list of three steps: the middle one is followed, and counted as avoidable, with its parts;
+    a break in the coding of the whole is one in that of the part."""
+    tree = (
+        Cause("body", "Body"),
+        Cause("heart", "Heart", "body"),
+        Cause("attack", "Heart attack", "heart", ("I21",)),
+        Cause("valve", "Heart valves", "heart", ("I34",)),
+        Cause("lung", "Lung", "body", ("J00",)),
+    )
+    panels = {f"north.f.{year}": gompertz_panel(seed=year) for year in (2012, 2013)}
+    own = {name: parted(panel, 3).deaths for name, panel in panels.items()}
+    counts = {
+        name: dict(zip(("attack", "valve", "lung"), deaths, strict=True))
+        for name, deaths in own.items()
+    }
+    coded = (Break("", "2013", "coding", "body"), Break("", "2013", "coding", "lung"))
+    edition(session, panels, causes=tree, by_cause=counts, breaks=coded)
+    found = figures(session, "north.f.2012", cause="heart", avoidable=("heart",))
+    here, young = own["north.f.2012"][:2], np.array(found.panel.grid.starts) < 75
+    assert found.avoidable is not None
+    assert [one.code for one in found.avoidable.causes] == ["attack", "valve"]
+    assert_allclose(found.avoidable.deaths, here[:, young].sum())
+    assert found.course is not None
+    assert_allclose(found.course.deaths[0], here.sum())
+    assert [one.cause for one in found.course.breaks] == ["body"]

@@ -8,7 +8,7 @@ import pytest
 from sqlalchemy.orm import Session
 
 from server.store import areas, breaks, causes, digests, editions, schedules
-from server.store.causes import in_tree_order, leaves, top_of
+from server.store.causes import in_tree_order, leaves, lineages
 from server.store.connect import transaction
 from server.store.content_lists import lists
 from server.store.errors import Refused
@@ -132,7 +132,7 @@ def test_a_list_is_a_tree() -> None:
 def test_deaths_are_counted_under_leaves_of_a_tree_of_any_depth() -> None:
     deep = (*LIST, Cause("valve", "", "heart"))
     assert [cause.code for cause in leaves(deep)] == ["breast", "harm", "valve"]
-    assert top_of(deep)["valve"] == "z-body"
+    assert lineages(deep)["valve"][-1] == "z-body"
 
 
 def test_the_lists_of_an_edition_are_read_together_as_each_by_itself(
