@@ -14,13 +14,14 @@ from server.actions.create_collection import create_collection
 
 CODE, NAME = "quillmere-causes", "Deaths by cause, Quillmere"
 STORY = (
-    "The deaths of the five large regions of Quillmere, 1999 to 2023, parted into causes by "
-    "chance. Ill-defined causes fall from some 9 to 3 per cent of deaths. Those men of working "
-    "age of Tollbay who die on top of what was usual, after the closing of the plant in 2009, die "
-    "of overdose, suicide and liver disease; those of the hot summer of 2018 of diseases of the "
-    "heart, the circulation and the lungs. From 2011 on new rules count a fifth of what was "
-    "pneumonia as dementia; the office coded the deaths of 2010 twice, and gives the ratios. Of "
-    "2023, which is provisional, many deaths of the young wait for an inquest."
+    "The deaths of the four regions of Quillmere that give their ages up to 100, 1999 to 2023, "
+    "parted into causes by chance. Ill-defined causes fall from some 9 to 3 per cent of deaths. "
+    "Those men of working age of Tollbay who die on top of what was usual, after the closing of "
+    "the plant in 2009, die of overdose, suicide and liver disease; those of the hot summer of "
+    "2018 of diseases of the heart, the circulation and the lungs. From 2011 on new rules count a "
+    "fifth of what was pneumonia as dementia; the office coded the deaths of 2010 twice, and "
+    "gives the ratios. Of 2023, which is provisional, many deaths of the young wait for an "
+    "inquest."
 )
 NOTE = "Deaths of the mainland by cause, 1999 to 2022 final, 2023 provisional."
 WHOLE, WHOLE_NAME = "mainland", "Mainland of Quillmere"

@@ -23,7 +23,8 @@ from seed_scenarios.quillmere_counts import (
     stalled,
 )
 
-MAINLAND = tuple(region for region in REGIONS if region.code != "little-auk")
+# Little Auk and Stonereach close their ages at 90 and 85, and so would the sum of all
+MAINLAND = tuple(region for region in REGIONS if region.open_age == STARTS[-1])
 RECODED = 2011  # from this year on the office codes by new rules
 LOST, GAINED = "pneumonia", "dementia"  # a part of the first is the second by the new rules,
 PART, OLDER = 0.2, 50  # at this age and over
