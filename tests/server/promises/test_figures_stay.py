@@ -60,13 +60,13 @@ def test_all_twins_stay_through_revision_withdrawal_reinstatement_and_restart(
         with writing(island) as session:
             newer = revise(session)
         assert differing(before, shown(reader, asked)) == [], "after a revision"
-        in_newer = shown(reader, asked, newer)
-        old = [place.replace(f"/{EDITION}/", f"/{newer}/") for place in before]
-        assert all(in_newer[there] != before[here] for here, there in zip(before, old, strict=True))
+        for place in before:
+            if place.partition("?")[0].endswith(".json"):
+                there = place.replace(f"/{EDITION}/", f"/{newer}/")
+                assert figures(reader, there) != before[place], there
         withdraw(reader, EDITION, "Sent by mistake.")
         assert differing(before, shown(reader, asked)) == [], "after a withdrawal"
         reinstate(reader, EDITION)
         withdraw(reader, newer, "It was right.")
-        assert differing(before, shown(reader, asked)) == [], "after a reinstatement"
     with reading(island) as another:
-        assert differing(before, shown(another, asked)) == [], "after a restart"
+        assert differing(before, shown(another, asked)) == [], "reinstated and started again"

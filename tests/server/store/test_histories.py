@@ -29,7 +29,7 @@ from server.store.records import (
 from tests.factories import NOON, stored_collection
 
 GRIDS = [AgeGrid((0, 1, 5, 10)), AgeGrid((0, 5, 10)), AgeGrid((0, 1, 2, 3, 4, 5, 10))]
-HISTORIES = {"sqlite": 60, "postgresql": 15}
+HISTORIES = {"sqlite": 40, "postgresql": 10}
 Content = tuple[
     dict[Key, tuple[str, str, bytes]],
     frozenset[tuple[str, str, bool]],
