@@ -6,20 +6,23 @@ from itertools import groupby
 from server.charts.chart import Break as Rule
 from server.charts.chart import Shock
 from server.exports.table import Column, Row, Table
+from server.pages import cause_choices
+from server.results.holdings import Holdings
 from server.sentences import breaks as say
 from server.sentences.text import _
 from server.store.records import Break
 
 
-def table(several: Sequence[Break], name: Callable[[str], str]) -> Table:
-    """One row a break or year of shock, by year. `name` is that of an area."""
+def table(several: Sequence[Break], held: Holdings) -> Table:
+    """One row a break or year of shock, by year, with the names of what is held."""
+    called = {cause.code: cause_choices.name(cause) for cause in held.causes}
     rows = tuple(
         Row(
             (
                 one.period,
-                name(one.area) if one.area else _("every area"),
+                held.name(one.area) if one.area else _("every area"),
                 say.kind(one.kind),
-                one.cause,
+                called.get(one.cause, one.cause),
                 one.note,
                 say.ratio(one),
             )

@@ -109,7 +109,7 @@ def _tables(found: Contents) -> tuple[Table, ...]:
     newest = [contents_tables.areas(found, found.newest)] if found.newest else []
     held = found.holdings
     listed = [contents_tables.causes(held.causes)] if held.causes else []
-    return (*newest, *listed, *([breaks.table(held.breaks, held.name)] if held.breaks else []))
+    return (*newest, *listed, *([breaks.table(held.breaks, held)] if held.breaks else []))
 
 
 def _quality(heading: Heading, question: ContentsQuestion) -> str:

@@ -227,6 +227,6 @@ def _further(found: Curves) -> tuple[Sentence, ...]:
     compared = None
     if whole in held.status:
         words = _("Compare it with {area}, of which it is part", area=held.name(found.parent))
-        asked = ComparisonQuestion(of, whole, DEFAULT_INDICATOR, *rest, overlap="rest")
-        compared = link(words, asked.simplified())
+        pair = ComparisonQuestion(of, whole, DEFAULT_INDICATOR, *rest, overlap="rest")
+        compared = link(words, pair.simplified())
     return say.further(life, others, compared)

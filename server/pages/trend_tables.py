@@ -80,7 +80,7 @@ def mark(found: Series, line: int, at: int) -> str:
 
 def breaks(found: Series) -> tuple[Table, ...]:
     """What parts these years, where anything does."""
-    return (of_breaks.table(found.broken, found.holdings.name),) if found.broken else ()
+    return (of_breaks.table(found.broken, found.holdings),) if found.broken else ()
 
 
 def _triple(found: Series, line: int, at: int) -> tuple[Cell, ...]:
