@@ -29,7 +29,7 @@ class CausePair:
     this: CauseCounts  # [cause, age]
     that: CauseCounts
     shared: Array | None  # [cause, age]
-    ratios: tuple[Break, ...]  # of comparability, applied
+    ratios: tuple[Break, ...]  # of comparability, applied to either
     shifts: tuple[
         tuple[Array, Array], ...
     ]  # of each ratio: what its standard error moves on a side
@@ -114,9 +114,9 @@ def side_by_side(
     ]
     if both is not None:
         both = np.minimum(both, np.minimum(counts[0].counts, counts[1].counts))
-    return CausePair(
-        rows, counts[0], counts[1], both, ours.ratios, _shifts((this, that), rows, grid)
-    )
+    ratios = tuple(dict.fromkeys((*ours.ratios, *theirs.ratios)))
+    shifts = _shifts((this, that), ratios, rows, grid)
+    return CausePair(rows, counts[0], counts[1], both, ratios, shifts)
 
 
 def _rows(values: Array, of: Causes, rows: Sequence[Cause]) -> Array:
@@ -130,19 +130,22 @@ def _rows(values: Array, of: Causes, rows: Sequence[Cause]) -> Array:
 
 
 def _shifts(
-    sides: tuple[Loaded, Loaded], rows: Sequence[Cause], grid: AgeGrid
+    sides: tuple[Loaded, Loaded],
+    ratios: Sequence[Break],
+    rows: Sequence[Cause],
+    grid: AgeGrid,
 ) -> tuple[tuple[Array, Array], ...]:
-    """What each ratio that was applied moves on the two sides where it is a standard error higher:
-    one error, which both share."""
-    found = []
-    for side in sides:
+    """What each ratio moves on the two sides where it is a standard error higher: one error, which
+    both share. Where it was not applied to a side, nothing."""
+
+    def moved(side: Loaded, ratio: Break) -> Array:
         causes = side.causes
-        if causes is None or causes.shifts is None:
-            return ()
-        found.append(side.panel.grid.regroup(_rows(causes.shifts, causes, rows), grid))
-    if len(found[0]) != len(found[1]):
-        return ()
-    return tuple(zip(*found, strict=True))
+        if causes is None or causes.shifts is None or ratio not in causes.ratios:
+            return np.zeros((len(rows), len(grid)))
+        shift = causes.shifts[causes.ratios.index(ratio)]
+        return side.panel.grid.regroup(_rows(shift, causes, rows), grid)
+
+    return tuple((moved(sides[0], one), moved(sides[1], one)) for one in ratios)
 
 
 def cause_parts(

@@ -5,13 +5,14 @@ from typing import Any
 
 import numpy as np
 
-from engine.ages import Array
+from engine.ages import AgeGrid, Array
 from engine.causes.counts import CauseCounts
 from engine.panel import Panel
 from engine.settings import Settings
 from server.results.causes import Causes
 from server.results.holdings import Holdings
 from server.results.loading import Found, Loaded, overlap
+from server.results.parted import hidden
 from server.results.questions import OVERLAPS, ComparisonQuestion, PopulationYear
 
 SHORT = 1e-6  # persons or deaths by which a whole may fall short of its part: rounding
@@ -125,4 +126,20 @@ def _causes(whole: Loaded, part: Loaded, panel: Panel) -> Causes | None:
     counted = None
     if more.counted is not None or fewer.counted is not None:
         counted = np.maximum(more.counts - fewer.counts, 0.0)
-    return replace(whole.causes, counts=CauseCounts(deaths * fits, counted), shifts=None)
+    hid = hidden(whole, panel.grid, causes=True) | hidden(part, panel.grid, causes=True)
+    return replace(
+        whole.causes,
+        counts=CauseCounts(deaths * fits, counted),
+        shifts=_shifts(whole, part, panel.grid),
+        withheld=hid if hid.any() else None,
+    )
+
+
+def _shifts(whole: Loaded, part: Loaded, grid: AgeGrid) -> Array | None:
+    """What the ratios, which are those of both, move in what is left."""
+    found = [
+        one.panel.grid.regroup(one.causes.shifts, grid)
+        for one in (whole, part)
+        if one.causes is not None and one.causes.shifts is not None
+    ]
+    return found[0] - found[1] if len(found) == 2 else None

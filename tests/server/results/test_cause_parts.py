@@ -141,6 +141,39 @@ def test_the_error_of_a_ratio_that_both_sides_share_widens_the_limits() -> None:
     assert_allclose(found.cause_low[2:], plain.cause_low[2:])
 
 
+def test_ratios_of_two_collections_err_each_by_itself() -> None:
+    """Were their errors taken for one, they would cancel out where both sides are moved alike."""
+    one = Break("", "2011", "coding", "cause-a", ratio=1.1, ratio_error=0.02)
+    other = Break("", "2013", "coding", "cause-a", ratio=1.3, ratio_error=0.02)
+    shift = np.zeros((1, 4, len(FIVE)))
+    shift[0, 0], shift[0, 1] = 5.0, -5.0
+
+    def found(*ratios: Break | None) -> CausePair:
+        sides = (
+            side(panel, parted(panel, 4, seed=seed), ratios=(ratio,), shifts=shift)
+            if ratio
+            else side(panel, parted(panel, 4, seed=seed))
+            for panel, seed, ratio in zip((THIS, THAT), (3, 4), ratios, strict=True)
+        )
+        return paired(*sides)
+
+    same, apart, alone = found(one, one), found(one, other), found(one, None)
+    assert same.ratios == (one,)
+    assert apart.ratios == (one, other)
+    assert [[bool(moved.any()) for moved in both] for both in apart.shifts] == [
+        [True, False],
+        [False, True],
+    ]
+    wide = {
+        name: parts(pair).cause_high[0] - parts(pair).by_cause[0]
+        for name, pair in (("same", same), ("apart", apart), ("alone", alone))
+    }
+    none = parts(paired(HERE, THERE))
+    assert wide["alone"] > none.cause_high[0] - none.by_cause[0]
+    assert wide["apart"] > wide["alone"]
+    assert wide["apart"] > wide["same"]
+
+
 def test_causes_through_the_years_add_up_and_need_every_year() -> None:
     middle = gompertz_panel(people=2e6, seed=5, level=2.2e-5)
     between = side(middle, parted(middle, 4, seed=6))

@@ -5,11 +5,12 @@ from dataclasses import replace
 import numpy as np
 import pytest
 from numpy.testing import assert_allclose, assert_array_equal
+from numpy.typing import NDArray
 
-from engine.ages import AgeGrid
+from engine.ages import AgeGrid, Array
 from engine.estimates import Reason
 from engine.panel import Panel
-from server.results.causes import CauseChoice
+from server.results.causes import CauseChoice, Causes
 from server.results.compared import Comparison
 from server.results.comparison import comparison
 from server.results.loading import Beside, Loaded, load
@@ -185,3 +186,42 @@ def test_deaths_counted_of_both_are_subtracted_too() -> None:
     assert found is not None
     assert found.panel.counted is not None
     assert_array_equal(found.panel.counted, counted[0].counts - counted[1].counts)
+
+
+def test_causes_of_the_rest_err_with_their_ratios_and_are_withheld_where_either_is() -> None:
+    whole, part = gompertz_panel(people=9e5, seed=1), gompertz_panel(people=2e5, seed=2)
+    short = AgeGrid(FIVE.starts[: FIVE.position(85) + 1])
+    hidden = np.zeros((2, 3, len(FIVE)), bool)
+    hidden[0, 0, FIVE.position(90)] = hidden[1, 2, FIVE.position(5)] = True
+    shifts = np.arange(1.0, 3 * len(FIVE) + 1).reshape(1, 3, -1)
+
+    def side(panel: Panel, moved: Array, gone: NDArray[np.bool_]) -> Loaded:
+        counts = parted(panel, 3)
+        return loaded(
+            panel, causes=Causes(cause_list(3), counts, shifts=moved, withheld=gone), protected=True
+        )
+
+    of = Rest(PopulationYear("isle", "f", "2014"), "north")
+    coarse = side(part, 0.25 * shifts, hidden[1])
+    assert coarse.causes is not None
+    gone = hidden[1][:, : len(short)]
+    coarse = replace(
+        coarse,
+        panel=part.regroup(short),
+        causes=replace(
+            coarse.causes,
+            counts=coarse.causes.counts.regroup(FIVE, short),
+            shifts=FIVE.regroup(0.25 * shifts, short),
+            withheld=gone,
+        ),
+    )
+    found = rest(of, {of.whole: side(whole, shifts, hidden[0]), of.part: coarse})
+    assert found is not None
+    assert found.causes is not None
+    assert found.causes.shifts is not None
+    assert found.causes.withheld is not None
+    assert_allclose(found.causes.shifts, FIVE.regroup(0.75 * shifts, short))
+    assert {(int(at), int(age)) for at, age in np.argwhere(found.causes.withheld)} == {
+        (0, short.position(85)),
+        (2, short.position(5)),
+    }
