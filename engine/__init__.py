@@ -1,3 +1,3 @@
 """Pure calculation: arrays in, frozen records out."""
 
-VERSION = "0.3.0"  # pyproject.toml says the same
+VERSION = "0.4.0"  # pyproject.toml says the same
