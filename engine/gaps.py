@@ -33,13 +33,14 @@ class Counted(NamedTuple):
 
     @property
     def counts(self) -> Array:
-        return self.deaths if self.counted is None else self.counted
+        """None where those counted were all given to other causes."""
+        return self.deaths if self.counted is None else np.where(self.deaths > 0, self.counted, 0.0)
 
     @property
     def worth(self) -> Array:
         """Deaths that each one counted stands for; 1 where none was."""
         with np.errstate(all="ignore"):
-            return np.where(self.counts > 0, self.deaths / self.counts, 1.0)
+            return np.where(self.counts > ROUNDING, self.deaths / self.counts, 1.0)
 
     @property
     def rates(self) -> Array:
@@ -143,8 +144,8 @@ def surplus(own: Counted, others: Counted) -> Array:
     array([[0.010742]])
     """
     # where one of the two counted none, what each stands for is that of the other
-    each = np.where(own.counts > 0, own.worth, others.worth)
-    theirs = np.where(others.counts > 0, others.worth, own.worth)
+    each = np.where(own.counts > ROUNDING, own.worth, others.worth)
+    theirs = np.where(others.counts > ROUNDING, others.worth, own.worth)
     with np.errstate(all="ignore"):
         lived, beside = own.exposure[..., None, :] / each, others.exposure[..., None, :] / theirs
         chance = betainc(own.counts, others.counts + 1, lived / (lived + beside))

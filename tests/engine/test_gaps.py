@@ -99,6 +99,19 @@ def test_deaths_that_stand_for_others_name_no_more() -> None:
     assert clear(by_chance(as_counted), 0.95).any()
 
 
+def test_deaths_given_to_other_causes_are_no_gap() -> None:
+    """Counted under a cause, and all given to others: as if none had been; another area kept them,
+    and where nobody is counted in one of the two each stands for what it does in the other."""
+    gone = Counted(np.array([[0.0, 0.0]]), np.array([100.0, 100.0]), np.array([[5.0, 0.0]]))
+    kept = Counted(np.array([[4.0, 6.0]]), np.array([900.0, 900.0]), np.array([[4.0, 3.0]]))
+    assert_array_equal(surplus(gone, kept), [[1.0, 1.0]])
+    assert_allclose(surplus(kept, gone)[0], [0.9**4, 0.9**3])
+    sides = Sides(gone, kept, nobody(gone))
+    found = alike(sides, kept.rates, np.array([-100.0, -50.0]), np.array(["a", "b", "c"]))
+    assert np.isfinite(found.expected).all()
+    assert (found.expected > 0).all()
+
+
 def test_gains_drawn_anew_have_the_chance_of_those_counted() -> None:
     """Half as many counted for the same deaths: the gaps of chance are wider by the root of 2."""
     own = Counted(np.array([[800.0]]), np.array([2e4]))
