@@ -24,7 +24,7 @@ from server.results.compared import Comparison, Side
 from server.results.comparison import comparison
 from server.results.explaining import decomposable
 from server.results.questions import ComparisonQuestion
-from server.sentences import basis, beside, kinds, names, sharing
+from server.sentences import basis, beside, care, kinds, names, sharing
 from server.sentences import cause_contributions as causes_say
 from server.sentences import comparison as say
 from server.sentences import contributions as ages_say
@@ -155,8 +155,15 @@ def _lead(found: Comparison) -> tuple[Sentence, ...]:
         named = found.question.of != "e0"
         said.append(ages_say.carried(*most, part.difference, named=named))
     said.append(causes.sentence(found))
+    said.append(_care(found))
     said.append(say.evenness(both, charts.asked(found, "H")))
     return tuple(sentence for sentence in said if sentence)
+
+
+def _care(found: Comparison) -> Sentence:
+    """Where readers find help, where a cause that asks for it is named."""
+    of = causes.parts(found)
+    return () if of is None else care.told(of.list)
 
 
 def _rest(found: Comparison) -> Sentence:

@@ -14,7 +14,8 @@ from server.results.questions import ComparisonQuestion, PopulationYear
 from server.sentences.pieces import plain
 from server.store.connect import Session
 from server.store.heading import heading
-from tests.factories import GRIDS, edition, gompertz_panel
+from server.store.records import Cause
+from tests.factories import GRIDS, edition, gompertz_panel, parted
 
 FIVE = GRIDS["abridged"]
 SHORT = AgeGrid(FIVE.starts[: FIVE.position(85) + 1])
@@ -152,3 +153,17 @@ def test_eight_statements_at_most(
         built = page(isle, "north.p.2014", "isle.f.2014")
     assert [notice.word for notice in built.frame.notices] == ["A newer edition stands"]
     assert len(statements) <= 8
+
+
+@pytest.mark.parametrize(("care", "helped"), [("suicide", True), ("", False)])
+def test_where_such_causes_are_named_readers_are_told_of_help(
+    session: Session, care: str, helped: bool
+) -> None:
+    listed = (Cause("one", "One"), Cause("two", "Two", care=care))
+    panels = {f"north.m.{year}": gompertz_panel(seed=int(year)) for year in ("2004", "2014")}
+    counts = {
+        name: dict(zip(("one", "two"), parted(panel, 2, seed=1).deaths, strict=True))
+        for name, panel in panels.items()
+    }
+    edition(session, panels, causes=listed, by_cause=counts)
+    assert ("help line" in words(page(session, "north.m.2014", "north.m.2004"))) == helped
