@@ -12,6 +12,7 @@ from server.results.causes import CauseChoice
 from server.results.compared import Asked, Comparison, Side, compared, shared_grid
 from server.results.holdings import Holdings, holdings
 from server.results.loading import Beside, Found, Loaded, load
+from server.results.protecting import protected
 from server.results.questions import ComparisonQuestion, PopulationYear
 from server.results.revision import Moved, moved
 from server.store.connect import Session
@@ -78,7 +79,8 @@ def _moved(
         grid = shared_grid(pair)
         this, that = (one.panel.regroup(grid) for one in (pair.this, pair.that))
         of = indicators.find(question.of)
-        return float(indicators.difference(of, this, that, settings).value)
+        difference = indicators.difference(of, this, that, settings)
+        return float(protected(of.key, difference, pair.this, pair.that).value)
 
     asked = sides.wanted(question, held, settings)
     return moved(session, heading, asked, beside, headline, figures=question.figures)

@@ -15,7 +15,7 @@ from server.results import models
 from server.results.estimating import COMPARED, EVERY, differences, estimates, stream
 from server.results.holdings import Holdings, holdings
 from server.results.loading import Beside, Found, Loaded, load
-from server.results.protecting import all_protected
+from server.results.protecting import all_protected, protected
 from server.results.questions import PopulationYear, PopulationYearQuestion
 from server.results.revision import Moved, moved
 from server.sentences import names
@@ -173,7 +173,8 @@ def _before(
 def _life_expectancy(loaded: Loaded | None, settings: Settings) -> float:
     if loaded is None:
         return np.nan
-    return float(indicators.estimate(indicators.find("e0"), loaded.panel, settings).value)
+    estimate = indicators.estimate(indicators.find("e0"), loaded.panel, settings)
+    return float(protected("e0", estimate, loaded).value)
 
 
 def finite(estimate: Estimate) -> bool:

@@ -132,6 +132,8 @@ def what_if_of(session: Session, heading: Heading, question: WhatIfQuestion) -> 
             there = _changed(collection, question, newer, held, settings, (question.of,))
         except BadValue:  # its ages or causes are others
             return np.nan
+        lender = newer[question.toward] if question.toward else None
+        there = _protected(there, newer[question.at], lender)
         return float(_headline(question, there).value)
 
     toward = found[question.toward] if question.toward else None
