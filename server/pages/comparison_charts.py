@@ -127,7 +127,7 @@ def life_expectancy(found: Comparison, source: str) -> Chart | None:
         finding=ages_say.by_age(asked(found, "e0"), span, carried),
         unit=_(
             "Years that each age group adds, {this} against {that}{intervals}; hatched: against the"
-            " rest",
+            " sum",
             this=both.this.whole,
             that=both.that.whole,
             intervals=_with_intervals(found),
@@ -156,7 +156,7 @@ def unevenness(found: Comparison, source: str) -> Chart | None:
         ),
         unit=_(
             "Thousandths that each age group adds to relative unevenness (H){intervals}; hatched:"
-            " against the rest",
+            " against the sum",
             intervals=_with_intervals(found),
         ),
         source=source,
@@ -180,7 +180,7 @@ def asked_for(found: Comparison, source: str) -> Chart | None:
         finding=ages_say.of_asked(asked(found, key), span, carried),
         unit=_(
             "What each age group adds to {what}, {this} against {that}{intervals}; hatched: against"
-            " the rest",
+            " the sum",
             what=_("{label}, {unit}", label=label, unit=of.unit) if of.unit else label,
             this=both.this.whole,
             that=both.that.whole,

@@ -62,9 +62,16 @@ class Telling:
         return self.low > 1 or self.high < 1
 
 
+def _least_apart(one: Telling) -> float:
+    """How far the rates are apart at the least, as a logarithm: the end of the band nearest 1."""
+    if one.exact:
+        return abs(math.log(one.value))
+    return math.log(one.low) if one.low > 1 else -math.log(one.high)
+
+
 def ratios(groups: Sequence[Telling], pair: Pair) -> str:
-    """At how many ages the rates are apart, and where most, of those where chance leaves it
-    clear."""
+    """At how many ages the rates are clearly apart, and where most surely; in a revision, where
+    most. What stands farthest apart is often an age at which few died."""
     if not groups:
         return _("Death rates of the two sides, by age")
     clear = [one for one in groups if one.clear and one.value > 0]
@@ -74,7 +81,7 @@ def ratios(groups: Sequence[Telling], pair: Pair) -> str:
             if groups[0].exact
             else _("At no age do the death rates of the two lie clearly apart")
         )
-    most = max(clear, key=lambda one: abs(math.log(one.value)))
+    most = max(clear, key=_least_apart)
     lower = most.value < 1
     percent = _percent(most.value)
     count = n_(
@@ -107,7 +114,7 @@ def ratios(groups: Sequence[Telling], pair: Pair) -> str:
     limits = _limits(most)
     return (
         _(
-            "{count}, farthest at {ages}: {percent} lower ({interval})",
+            "{count}, most surely at {ages}: {percent} lower ({interval})",
             count=count,
             ages=most.ages,
             percent=percent,
@@ -115,7 +122,7 @@ def ratios(groups: Sequence[Telling], pair: Pair) -> str:
         )
         if lower
         else _(
-            "{count}, farthest at {ages}: {percent} higher ({interval})",
+            "{count}, most surely at {ages}: {percent} higher ({interval})",
             count=count,
             ages=most.ages,
             percent=percent,

@@ -113,15 +113,17 @@ def test_a_direction_is_claimed_only_where_its_interval_leaves_out_nought(number
 def test_the_ratio_named_is_one_whose_band_leaves_out_one(number_: int) -> None:
     found = comparison(number_)
     chart = drawn(found).get("ratios")
-    if chart is None or "farthest at" not in chart.finding:
+    if chart is None or "most surely at" not in chart.finding:
         return
-    ages = re.search(r"farthest at (.*?): (\d+)", chart.finding)
+    ages = re.search(r"most surely at (.*?): (\d+)", chart.finding)
     assert ages is not None
     at = found.groups.labels.index(ages[1])
     low, high = float(found.ratios.low[at]), float(found.ratios.high[at])
     assert low > 1 or high < 1
     assert ("higher" in chart.finding) == (low > 1)
     assert number(abs(100 * (float(found.ratios.value[at]) - 1)), 0) == ages[2]
+    least = np.fmax(found.ratios.low, 1 / found.ratios.high)  # how far apart at the least
+    assert least[at] == np.nanmax(least)
     known = [
         one
         for one in zip(found.ratios.low, found.ratios.high, strict=True)
@@ -235,7 +237,7 @@ def test_the_tests_see_both_clear_and_unclear_ones() -> None:
     assert DIRECTIONS.search(answer(clearly))
     assert "By cause" in plain(comparison_causes.sentence(clearly))
     assert comparison_even.sentence(clearly)
-    assert "farthest at" in drawn(clearly)["ratios"].finding
+    assert "most surely at" in drawn(clearly)["ratios"].finding
 
 
 @pytest.mark.parametrize("seed", [3, 4, 7])
