@@ -142,7 +142,7 @@ def _answer(found: CauseFigures) -> Sentence:
 def _lead(found: CauseFigures) -> tuple[Sentence, ...]:
     if not found.leading:
         return ()
-    said: list[Sentence] = []
+    said = [say.external(cause_choices.name(found.causes[at]) for at in found.leading)]
     first = found.leading[0]
     if found.readable:
         said.append(say.meaning(found.all["e0"]))
@@ -159,7 +159,7 @@ def _lead(found: CauseFigures) -> tuple[Sentence, ...]:
     gained = found.estimates["gain"][first]
     if np.isfinite(gained.value):
         said.append(say.gain(cause_choices.name(found.causes[first]), gained, tables.years(found)))
-    return tuple(said)
+    return tuple(sentence for sentence in said if sentence)
 
 
 def _not_read(found: CauseFigures) -> Sentence:

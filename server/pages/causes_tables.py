@@ -51,10 +51,11 @@ def deaths(found: CauseFigures) -> Table:
         _total(count(float(found.panel.deaths.sum())), *WHOLE, *_all(found, "edagger", "edagger"))
     )
     note = _("Shares and years lost add up over causes.")
+    spread = found.question.causes.spread if found.question.causes else ()
     none = [
         names.inside(cause_choices.name(cause))
         for at, cause in enumerate(found.causes)
-        if found.deaths.deaths[at] == 0
+        if found.deaths.deaths[at] == 0 and cause.kind not in spread
     ]
     if none:
         note += " " + _("No deaths: {causes}.", causes=names.listed(none))

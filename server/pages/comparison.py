@@ -26,6 +26,7 @@ from server.results.explaining import decomposable
 from server.results.questions import ComparisonQuestion
 from server.sentences import basis, beside, care, kinds, names, sharing
 from server.sentences import cause_contributions as causes_say
+from server.sentences import causes as cause_words
 from server.sentences import comparison as say
 from server.sentences import contributions as ages_say
 from server.sentences.pieces import Piece, Sentence, phrase
@@ -155,6 +156,7 @@ def _lead(found: Comparison) -> tuple[Sentence, ...]:
         named = found.question.of != "e0"
         said.append(ages_say.carried(*most, part.difference, named=named))
     said.append(causes.sentence(found))
+    said.append(cause_words.external(one.label for one in causes.named(found)))
     said.append(_care(found))
     said.append(say.evenness(both, charts.asked(found, "H")))
     return tuple(sentence for sentence in said if sentence)

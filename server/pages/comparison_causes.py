@@ -61,19 +61,27 @@ def _ages(found: Comparison, of: CauseParts, at: int) -> tuple[str, float]:
     return (run, held) if told else ("", 0.0)
 
 
-def sentence(found: Comparison) -> Sentence:
+def named(found: Comparison) -> list[say.Carrier]:
+    """The causes of a clear difference that are told, the largest first."""
     of = parts(found)
-    if of is None:
-        return ()
+    if of is None or not asked(found, of.key).clear:
+        return []
     one = printed(of.key)
     way = np.sign(of.difference)
-    named = [
+    return [
         cause
         for cause in carriers(found, of)
         if cause.clear and np.sign(cause.value) == way and abs(cause.value) >= abs(_tenth(of, one))
     ][: say.MOST]
-    rest = one.scale * of.difference - sum(cause.value for cause in named)
-    return say.carried(asked(found, of.key), named, rest, one.decimals)
+
+
+def sentence(found: Comparison) -> Sentence:
+    of = parts(found)
+    if of is None:
+        return ()
+    one, told = printed(of.key), named(found)
+    rest = one.scale * of.difference - sum(cause.value for cause in told)
+    return say.carried(asked(found, of.key), told, rest, one.decimals)
 
 
 def _tenth(of: CauseParts, one: Printed) -> float:

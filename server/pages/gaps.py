@@ -3,24 +3,21 @@
 from dataclasses import dataclass
 from typing import ClassVar
 
-from engine.indicators import INDICATORS
 from server.charts.chart import Chart
 from server.exports.table import Table
-from server.pages import cause_choices, frames, provisional
+from server.pages import cause_choices, frames
 from server.pages import gaps_tables as tables
 from server.pages.choices import Choice, Options, choice
-from server.pages.page import Caution, Frame, Page
+from server.pages.page import Caution, Page
 from server.pages.statuses import marked, marks
-from server.pages.what_would_change import back
+from server.pages.what_would_change import back, frame, moved_before
 from server.pages.withholding import caution, charts_given, tables_given
 from server.results.gaps import LEAST, Closed, Gaps, GapsQuestion, gaps_of
-from server.results.questions import PopulationYearQuestion, address
-from server.sentences import basis, breaks, care, names, sharing
+from server.sentences import basis, breaks, care, causes, names, sharing
 from server.sentences import gaps as say
 from server.sentences.numbers import whole
-from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.pieces import Sentence
 from server.sentences.reasons import reason
-from server.sentences.standing import Headline
 from server.sentences.text import _
 from server.store.connect import Session
 from server.store.heading import Heading
@@ -46,12 +43,21 @@ def build(session: Session, heading: Heading, question: GapsQuestion) -> GapsPag
     found = gaps_of(session, heading, question)
     drawn = _charts(found, frames.source(heading))
     return GapsPage(
-        frame=_frame(found),
+        frame=frame(
+            found,
+            _("{who}, {year}: where closing the gap adds most"),
+            _("{who}: where closing the gap adds most"),
+        ),
         answer=_answer(found),
         lead=_lead(found),
         tables=_tables(found),
         charts=drawn,
-        cautions=_cautions(found, _moved_before(session, found)),
+        cautions=_cautions(
+            found,
+            moved_before(
+                session, found, any_=any(one.status == "provisional" for one in found.protected)
+            ),
+        ),
         twins=frames.twins(heading, question),
         drawn=frozenset(one.key for one in drawn),
         closed=found.closed is not None,
@@ -75,9 +81,18 @@ def _answer(found: Gaps) -> Sentence:
         why = reason(int(found.e0.reason), found.settings)
         known = say.no_benchmark(found.question.least) if not found.chosen.members else why
         return say.no_answer(_who(found), found.period, known)
-    named = tables.places(found)
-    clear = [say.Gap(*named[at], tables.gain(found, at)) for at in tables.clear(found)]
+    told = tables.clear(found)
+    clear = [
+        say.Gap(*named, tables.gain(found, at))
+        for named, at in zip(_named(found), told, strict=True)
+    ]
     return say.answer(_who(found), found.period, clear, _together(closed))
+
+
+def _named(found: Gaps) -> list[tuple[str, str]]:
+    """Ages and cause of the clear gaps, the largest first."""
+    known = tables.places(found)
+    return [known[at] for at in tables.clear(found)]
 
 
 def _together(closed: Closed) -> say.Together:
@@ -94,6 +109,7 @@ def _lead(found: Gaps) -> tuple[Sentence, ...]:
         return ()
     said = [
         care.told(closed.causes),
+        causes.external(cause for _ages, cause in _named(found)),
         say.benchmark(
             [found.holdings.name(area) for area in found.chosen.members],
             found.chosen.years,
@@ -126,39 +142,6 @@ def _computed(found: Gaps) -> tuple[Sentence, ...]:
     closed = found.closed
     own = say.computed(closed.compared, closed.excess.size) if closed else ()
     return (*basis.computed(found.settings), *own, *sharing.computed(found.loaded.panel))
-
-
-def _frame(found: Gaps) -> Frame:
-    heading, of, asked = found.heading, found.of, found.question
-    headline = None
-    if found.moved is not None:
-        e0 = INDICATORS["e0"]
-        headline = Headline(_(e0.label), e0.unit, float(found.e0.value), found.moved.value)
-    own = PopulationYearQuestion(of, asked.figures, asked.settings)
-    place = address(heading.collection.code, heading.edition.number, own)
-    return frames.pinned(
-        heading,
-        asked,
-        title=_(
-            "{who}, {year}: where closing the gap adds most",
-            who=names.population_first(of.sex, found.name),
-            year=found.period,
-        ),
-        place=phrase(
-            _("{who}: where closing the gap adds most"),
-            who=Piece(_("{who} in {year}", who=_who(found), year=found.period), place),
-        ),
-        figures=asked.figures,
-        settings=asked.settings,
-        notices=frames.notices(heading, asked, found.moved, headline),
-    )
-
-
-def _moved_before(session: Session, found: Gaps) -> basis.Told:
-    asked, any_ = found.question, any(one.status == "provisional" for one in found.protected)
-    return provisional.caution(
-        session, found.heading, found.holdings, asked.settings, asked.figures, any_=any_
-    )
 
 
 def _cautions(found: Gaps, moved_before: basis.Told) -> tuple[Caution, ...]:

@@ -41,6 +41,12 @@ class CauseChoice:
         return (chosen or cls()) if held else None
 
     @property
+    def spread(self) -> tuple[str, ...]:
+        """Kinds of causes whose deaths are given to others."""
+        chosen = {"ill_defined": self.ill_defined, "undetermined": self.undetermined}
+        return tuple(kind for kind, value in chosen.items() if value == "spread")
+
+    @property
     def pairs(self) -> list[tuple[str, str]]:
         """The four keys of an address, in their order."""
         values = (self.level, self.ill_defined, self.undetermined, self.ratios)

@@ -4,7 +4,7 @@ No sentence says that a cause did or would do anything, and none ranks people or
 """
 
 import math
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import replace
 
 from engine.estimates import Estimate
@@ -85,6 +85,13 @@ def meaning(e0: Estimate) -> Sentence:
         ),
         e0=f"{shown(e0, YEARS)}{NO_BREAK}{_('years')}",
     )
+
+
+def external(labels: Iterable[str]) -> Sentence:
+    """What external causes are, where these labels name them: not a word of every day."""
+    if _("External causes") not in labels:
+        return ()
+    return phrase(_("External causes are injuries and poisonings, by accident or by intent."))
 
 
 def not_read(why: str, law: Piece) -> Sentence:

@@ -197,3 +197,29 @@ def test_other_pages_lead_here_where_there_are_causes(isle: Session) -> None:
     edition(isle, {"north.m.2013": gompertz_panel(sex="m")}, code="bare")
     bare = population_year.build(isle, heading(isle, "bare", 1), PopulationYearQuestion(of))
     assert "/causes?" not in str(bare.further)
+
+
+@pytest.mark.parametrize(("share", "told"), [(0.6, True), (0.0, False)])
+def test_external_causes_are_put_in_plain_words_where_they_are_named(
+    session: Session, share: float, told: bool
+) -> None:
+    panels = {f"north.f.{year}": gompertz_panel(seed=year) for year in (2012, 2013)}
+    counts = {
+        name: {
+            code: (share if code == "falls" else 1 - share if code == "stroke" else 0)
+            * panel.deaths
+            for code in LEAVES
+        }
+        for name, panel in panels.items()
+    }
+    edition(session, panels, causes=SHORT, by_cause=counts)
+    found = page(session, "north.f.2013", causes=CauseChoice(level="groups"))
+    lead = " ".join(plain(one) for one in found.lead)
+    assert ("External causes are injuries" in lead) == told
+
+
+def test_causes_whose_deaths_are_spread_are_not_said_to_have_none(isle: Session) -> None:
+    choice = CauseChoice(level="groups", ill_defined="spread", undetermined="spread")
+    note = page(isle, causes=choice).table("causes").note.lower()
+    assert "ill-defined" not in note
+    assert "undetermined" not in note
