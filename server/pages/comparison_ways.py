@@ -4,12 +4,11 @@ against, and what has become of the editions they stand in."""
 from dataclasses import dataclass, replace
 
 from engine.standards.remaining_years import REFERENCES
+from server.pages import cause_choices, what_would_change
 from server.pages import comparison_tables as tables
-from server.pages import what_would_change
 from server.pages.choices import Grouped, Offer, Options, offer
 from server.pages.choices import indicators as offered
 from server.pages.page import Notice
-from server.results.causes import CauseChoice
 from server.results.compared import Comparison, Side
 from server.results.questions import (
     OVERLAPS,
@@ -22,16 +21,6 @@ from server.sentences import beside as say
 from server.sentences import names
 from server.sentences.pieces import Piece, Sentence, phrase
 from server.sentences.text import _
-
-
-@dataclass(frozen=True, slots=True)
-class CauseLine:
-    """One choice of how deaths by cause are shown."""
-
-    key: str
-    label: str
-    options: Options
-    value: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,7 +40,7 @@ class Choice:
     standards: Options
     that_collection: str
     that_edition: str
-    causes: tuple[CauseLine, ...]  # empty where the edition has none
+    causes: tuple[cause_choices.CauseLine, ...]  # empty where the edition has none
     figures: str
     settings: str
 
@@ -85,29 +74,8 @@ def choice(found: Comparison) -> Choice:
         that_edition=str(question.that_edition) if elsewhere else "",
         figures=question.figures,
         settings=question.settings,
-        causes=_causes(question.causes),
+        causes=cause_choices.lines(question.causes),
     )
-
-
-def _causes(chosen: CauseChoice | None) -> tuple[CauseLine, ...]:
-    """How deaths by cause are shown: a line of the form for each choice."""
-    if chosen is None:
-        return ()
-    spread = ("spread", _("spread"))
-    kept = ("kept", _("kept as they are"))
-    told: dict[str, tuple[str, Options]] = {
-        "causes": (
-            _("Causes of death"),
-            (("groups", _("in groups")), ("causes", _("each by itself"))),
-        ),
-        "ill_defined": (_("Ill-defined deaths"), (kept, spread)),
-        "undetermined": (_("Undetermined intent"), (kept, spread)),
-        "ratios": (
-            _("Comparability ratios"),
-            (("kept", _("not applied")), ("applied", _("applied"))),
-        ),
-    }
-    return tuple(CauseLine(key, *told[key], value) for key, value in chosen.pairs)
 
 
 def place(found: Comparison) -> Sentence:

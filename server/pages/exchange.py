@@ -5,28 +5,25 @@ from typing import ClassVar
 
 import numpy as np
 
-from engine.indicators import INDICATORS
 from engine.standardisation import FEW_DEATHS
 from server.charts.chart import At, Chart, Series
 from server.charts.scales import log_ticks
 from server.exports.table import Cell, Column, Gap, Row, Table
-from server.pages import cause_choices, frames, provisional
+from server.pages import cause_choices, frames
 from server.pages.cells import count, number, withheld
 from server.pages.choices import Choice, choice
 from server.pages.drawing import ages as age_axis
 from server.pages.drawing import at_age, places, values
-from server.pages.page import Caution, Frame, Page
+from server.pages.page import Caution, Page
 from server.pages.statuses import marked, marks
-from server.pages.what_would_change import back
+from server.pages.what_would_change import back, frame, moved_before
 from server.pages.withholding import caution, charts_given, tables_given
 from server.results.exchange import Exchange, ExchangeQuestion, exchange
-from server.results.questions import PopulationYearQuestion, address
 from server.sentences import basis, breaks, care, names, sharing
 from server.sentences import exchange as say
 from server.sentences.models import out_of_reach
-from server.sentences.pieces import Piece, Sentence, phrase
+from server.sentences.pieces import Sentence
 from server.sentences.reasons import reason
-from server.sentences.standing import Headline
 from server.sentences.text import _
 from server.store.connect import Session
 from server.store.heading import Heading
@@ -50,12 +47,18 @@ def build(session: Session, heading: Heading, question: ExchangeQuestion) -> Exc
     found = exchange(session, heading, question)
     drawn = _charts(found, frames.source(heading))
     return ExchangePage(
-        frame=_frame(found),
+        frame=frame(
+            found,
+            _("{who}, {year}: deaths for a month of life expectancy"),
+            _("{who}: deaths for a month of life expectancy"),
+        ),
         answer=_answer(found),
         lead=_lead(found),
         tables=_tables(found),
         charts=drawn,
-        cautions=_cautions(found, _moved_before(session, found)),
+        cautions=_cautions(
+            found, moved_before(session, found, any_=found.loaded.status == "provisional")
+        ),
         twins=frames.twins(heading, question),
         drawn=frozenset(chart.key for chart in drawn),
         by_cause=bool(found.own.causes) and found.readable,
@@ -233,39 +236,6 @@ def _charts(found: Exchange, source: str) -> tuple[Chart, ...]:
         ),
     )
     return charts_given([chart], found.loaded)
-
-
-def _frame(found: Exchange) -> Frame:
-    heading, of, asked = found.heading, found.of, found.question
-    headline = None
-    if found.moved is not None:
-        e0 = INDICATORS["e0"]
-        headline = Headline(_(e0.label), e0.unit, float(found.e0.value), found.moved.value)
-    own = PopulationYearQuestion(of, asked.figures, asked.settings)
-    place = address(heading.collection.code, heading.edition.number, own)
-    return frames.pinned(
-        heading,
-        asked,
-        title=_(
-            "{who}, {year}: deaths for a month of life expectancy",
-            who=names.population_first(of.sex, found.name),
-            year=found.period,
-        ),
-        place=phrase(
-            _("{who}: deaths for a month of life expectancy"),
-            who=Piece(_("{who} in {year}", who=_who(found), year=found.period), place),
-        ),
-        figures=asked.figures,
-        settings=asked.settings,
-        notices=frames.notices(heading, asked, found.moved, headline),
-    )
-
-
-def _moved_before(session: Session, found: Exchange) -> basis.Told:
-    asked, any_ = found.question, found.loaded.status == "provisional"
-    return provisional.caution(
-        session, found.heading, found.holdings, asked.settings, asked.figures, any_=any_
-    )
 
 
 def _cautions(found: Exchange, moved_before: basis.Told) -> tuple[Caution, ...]:
