@@ -151,8 +151,8 @@ def test_a_faulty_file_is_told_row_by_row_and_becomes_nothing(
 def test_the_demonstration_is_loaded_by_one_button(empty_site: Site, visit: Enter) -> None:
     visitor = visit(empty_site)
     page = visitor.goto("/")
-    page.get_by_role("button", name="Load the demonstration").click()
-    page.wait_for_url("**/c/quillmere/3/contents**", timeout=60_000)  # it is built
+    page.get_by_role("button", name="Load the demonstration").click(timeout=180_000)  # it is built
+    page.wait_for_url("**/c/quillmere/3/contents**")
     assert "Quillmere" in page.locator("main").inner_text()
     look(visitor, scripts=True)
 
