@@ -41,6 +41,16 @@ class Trial:
     note: str = ""  # as typed so far
 
 
+def _lead(trial: Trial | None, newest: Policy | None, last: Kept) -> tuple[Sentence, ...]:
+    said: list[Sentence] = []
+    if trial:
+        said += [say.stays(trial.terms, last), say.for_good(trial.terms)]
+    elif newest:
+        said.append(say.stays(newest.terms, last))
+    said += say.lead(newest.note if newest and not trial else "", last.exposed)
+    return tuple(sentence for sentence in said if sentence)
+
+
 def build(session: Session, code: str, trial: Trial | None = None) -> PolicyPage:
     collection = collections.find(session, code)
     known = policies.listing(session, code)
@@ -66,7 +76,7 @@ def build(session: Session, code: str, trial: Trial | None = None) -> PolicyPage
         answer=say.trial(trial.terms, last)
         if trial
         else say.answer(collection.name, newest.terms if newest else None, last),
-        lead=say.lead(newest.note if newest else "", last.exposed),
+        lead=_lead(trial, newest, last),
         tables=tuple(table for table in (effects, _marks(), past) if table.rows),
         twins={twin: f"{place}.{twin}" for twin in ("csv", "xlsx", "json")} if not trial else {},
         effects=effects,

@@ -93,20 +93,37 @@ def terms(of: Terms) -> str:
 
 
 def _changed(of: Terms, newest: Kept) -> str:
-    """What these terms do, and what stays as years were first shown."""
+    """What these terms do, apart from what years are left as they were first shown."""
+    return _counts(newest.rounded if of.base else newest.cells)
+
+
+def stays(of: Terms, newest: Kept) -> Sentence:
+    """What these terms leave as it was, if anything."""
     if of.base and newest.cells:
-        return _(
-            "{counts}, and {others} withheld in years that were shown so before",
-            counts=_counts(newest.rounded),
-            others=_counts(newest.cells),
+        return phrase(
+            _("{counts} stay withheld: a year keeps the way it was first shown in."),
+            counts=_counts(newest.cells),
         )
     if newest.rounded and not of.base:
-        return _(
-            "{counts}, and {others} rounded in years that were shown so before",
-            counts=_counts(newest.cells),
-            others=_counts(newest.rounded),
+        return phrase(
+            _("{counts} stay rounded: a year keeps the way it was first shown in."),
+            counts=_counts(newest.rounded),
         )
-    return _counts(newest.rounded if of.base else newest.cells)
+    return ()
+
+
+def for_good(of: Terms) -> Sentence:
+    """What rounding takes for good, said before it is set."""
+    if not of.base:
+        return ()
+    return phrase(
+        "{word} {text}",
+        word=Piece(_("For good."), emphasis="rubric"),
+        text=_(
+            "A year shown with rounded counts stays so under every later policy. Where counts are"
+            " rounded none are shown by cause of death."
+        ),
+    )
 
 
 def _counts(count: int) -> str:

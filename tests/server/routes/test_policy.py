@@ -24,6 +24,21 @@ def test_a_trial_sets_nothing(reader: TestClient) -> None:
     assert "has no policy" in reader.get(PLACE).text
 
 
+def test_before_rounding_is_set_it_is_said_that_it_is_for_good(reader: TestClient) -> None:
+    assert "For good." not in reader.get(PLACE, params=TERMS).text
+    assert "For good." in reader.get(PLACE, params=TERMS | {"base": "5"}).text
+
+
+def test_what_stays_as_it_was_first_shown_is_told_apart(reader: TestClient) -> None:
+    reader.post(PLACE, data=TERMS | {"note": "The old reason."})
+    assert "a year keeps the way" not in reader.get(PLACE).text.partition("What it does")[0]
+    tried = reader.get(PLACE, params=TERMS | {"base": "5"}).text
+    first = tried.partition("<main")[2].partition("What it does")[0].replace("\xa0", " ")
+    assert "would change 0 counts of the newest edition." in first
+    assert "counts stay withheld: a year keeps the way" in first
+    assert "The old reason." not in first
+
+
 def test_one_form_tries_and_sets_and_keeps_what_was_typed(reader: TestClient) -> None:
     tried = reader.get(PLACE, params=TERMS | {"note": "As was decided."}).text
     main = tried.partition("<main")[2]
