@@ -90,6 +90,15 @@ class AgeGrid:
             return self
         return AgeGrid(tuple(start for start in self.starts if start in other.starts))
 
+    @property
+    def fives(self) -> "AgeGrid":
+        """In groups of at least five years after the first, for pictures and tables.
+
+        >>> AgeGrid((0, 1, 2, 3, 4, 5, 6)).fives.starts
+        (0, 1, 5)
+        """
+        return AgeGrid(tuple(start for start in self.starts if start % 5 == 0 or start == 1))
+
     def regroup(self, counts: Array, to: "AgeGrid") -> Array:
         """Counts summed into the coarser grid, exactly: [..., age] -> [..., age of `to`].
 

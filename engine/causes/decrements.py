@@ -2,14 +2,10 @@
 
 import numpy as np
 
-from engine.ages import Array
-from engine.causes.counts import CauseCounts
 from engine.causes.number import CauseNumber
-from engine.causes.parting import Parted, Slopes, cause_first, part
+from engine.causes.parting import Parted, Slopes, cause_first
 from engine.estimates import Reason
 from engine.indicator import Needs, Unit
-from engine.panel import Panel
-from engine.settings import Settings
 from engine.standardisation import LEAST_DEATHS
 from engine.tables import Partials
 
@@ -20,19 +16,6 @@ SOURCE = (
     "Chiang (1968), Introduction to Stochastic Processes in Biostatistics, chapter 11; Preston,"
     " Heuveline & Guillot (2001), Demography, chapter 4"
 )
-
-
-def deaths_in_table(panel: Panel, causes: CauseCounts, settings: Settings) -> Array:
-    """Deaths of the life table by cause, d_i(x) = d(x) m_i(x) / m(x) of 1 born, which add up to
-    those of the table.
-
-    Shape:   panel [..., age], causes [..., cause, age] -> [..., cause, age] on the panel's grid.
-    Missing: nan where the table is.
-    Source:  Chiang (1968), Introduction to Stochastic Processes in Biostatistics, chapter 11.
-    """
-    parted = part(panel, causes, settings)
-    table = parted.chain.table
-    return table.grid.regroup(np.moveaxis(parted.share * table.dx, 0, -2), panel.grid)
 
 
 def chance_before(age: int | None) -> CauseNumber:

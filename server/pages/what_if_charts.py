@@ -23,7 +23,7 @@ def rates(found: Findings, source: str) -> Chart | None:
     """Death rates of all causes as they were and as changed, on a ratio scale."""
     if not found.anything:
         return None
-    grid = tables.groups(found.grid)
+    grid = found.grid.fives
     own = found.changed.own
     lived = found.grid.regroup(own.panel.exposure, grid)
     was = tables.by_group(found, own.parts.deaths)
@@ -64,7 +64,7 @@ def rates(found: Findings, source: str) -> Chart | None:
 
 
 def _line(found: Findings, column: Array, label: str, role: str, weight: str, low: float) -> Series:
-    grid = tables.groups(found.grid)
+    grid = found.grid.fives
     upper = weight == "that"
     at = max(low, at_age(grid, np.append(column, np.nan), 50 if upper else 56))
     place = At(48, 2.1 * at, "right", 0, narrow_x=52) if upper else At(60, at / 2.1, "left", 0)
@@ -82,7 +82,7 @@ def _line(found: Findings, column: Array, label: str, role: str, weight: str, lo
 
 def fewer(found: Findings, source: str) -> Chart | None:
     """How many deaths fewer, or more, at each age."""
-    grid = tables.groups(found.grid)
+    grid = found.grid.fives
     by_group = tables.by_group(found, found.changed.numbers.fewer)
     total = float(by_group.sum())
     if not found.anything or abs(total) < 0.05:
@@ -139,7 +139,7 @@ def fewer(found: Findings, source: str) -> Chart | None:
 
 def _most(found: Findings, by_group: Array) -> tuple[str, float]:
     """The shortest run of groups with at least half of all, and its share."""
-    grid = tables.groups(found.grid)
+    grid = found.grid.fives
     starts, total = grid.starts, float(by_group.sum())
     ends = (*starts[1:], max(starts[-1] + 5, 105))
     sums = np.concatenate([[0.0], np.cumsum(by_group)])

@@ -4,7 +4,7 @@ from collections.abc import Sequence
 
 import numpy as np
 
-from engine.ages import AgeGrid, Array
+from engine.ages import Array
 from engine.estimates import Reason
 from engine.indicators import GROUPS, find
 from server.exports.table import Cell, Column, Row, Table
@@ -140,14 +140,9 @@ def whole_of(found: Findings) -> str:
     return held.name(parent) if parent else ""
 
 
-def groups(grid: AgeGrid) -> AgeGrid:
-    """The ages in groups of at least five years after the first, for pictures and tables."""
-    return AgeGrid(tuple(start for start in grid.starts if start % 5 == 0 or start == 1))
-
-
 def by_group(found: Findings, cells: Array) -> Array:
     """[part, age] summed over parts and into the groups."""
-    return found.grid.regroup(cells.sum(axis=-2), groups(found.grid))
+    return found.grid.regroup(cells.sum(axis=-2), found.grid.fives)
 
 
 def deaths(found: Findings) -> Table:
@@ -156,7 +151,7 @@ def deaths(found: Findings) -> Table:
     fewer, left, there = (
         by_group(found, cells) for cells in (numbers.fewer, numbers.years, own.parts.deaths)
     )
-    grid = groups(found.grid)
+    grid = found.grid.fives
     gone = found.withheld_on(grid)
     rows = tuple(
         Row((label, *([withheld()] * 4 if hidden else _counts(there[at], fewer[at], left[at]))))

@@ -21,7 +21,7 @@ from server.results.holdings import Holdings, NotInEdition, holdings
 from server.results.loading import Beside, Found, Loaded, assembled, needed
 from server.results.questions import CausesQuestion, PopulationYear
 from server.results.releasing import released
-from server.results.revision import Moved, moved
+from server.results.revision import Moved, life_expectancy, moved
 from server.results.targets import Reached, reached
 from server.sentences import names
 from server.sentences.text import _
@@ -247,15 +247,9 @@ def _moved(
     beside: Beside,
     settings: Settings,
 ) -> Moved | None:
-    def life_expectancy(newer: Found) -> float:
-        loaded = newer.get(question.of)
-        if loaded is None:
-            return np.nan
-        one = indicators.find("e0")
-        return float(indicators.estimate(one, loaded.panel, settings).value)
-
     bare = replace(beside, causes=None)
-    return moved(session, heading, [question.of], bare, life_expectancy, figures=question.figures)
+    headline = life_expectancy(question.of, settings)
+    return moved(session, heading, [question.of], bare, headline, figures=question.figures)
 
 
 def no_causes() -> str:

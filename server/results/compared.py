@@ -180,7 +180,7 @@ def compared(
     this, that = (
         replace(side, estimates=all_protected(side.estimates, side.loaded)) for side in (this, that)
     )
-    groups = _groups(grid)
+    groups = grid.fives
     return Comparison(
         heading=asked.heading,
         holdings=asked.held,
@@ -306,7 +306,3 @@ def _on(grid: AgeGrid, by_age: Array) -> Array:
     """What a table's ages hold, a law's single years summed into the open group they spread."""
     last = len(grid) - 1
     return np.append(by_age[:last], by_age[last:].sum())
-
-
-def _groups(grid: AgeGrid) -> AgeGrid:
-    return AgeGrid(tuple(start for start in grid.starts if start % 5 == 0 or start == 1))

@@ -16,9 +16,9 @@ from engine.whatif_reach import Reach, uniform
 from server.results.causes import CauseChoice
 from server.results.holdings import Holdings, holdings
 from server.results.keys import PopulationYear
-from server.results.loading import Beside, Found, Loaded, load
+from server.results.loading import Beside, Loaded, load
 from server.results.parted import Parted, hidden, parted
-from server.results.revision import Moved, moved
+from server.results.revision import Moved, life_expectancy, moved
 from server.results.with_causes import CausesOfOne
 from server.sentences import names
 from server.store.connect import Session
@@ -116,14 +116,7 @@ def exchange(session: Session, heading: Heading, question: ExchangeQuestion) -> 
             heading,
             [question.of],
             beside,
-            lambda newer: _life_expectancy(newer, question.of, settings),
+            life_expectancy(question.of, settings),
             figures=question.figures,
         ),
     )
-
-
-def _life_expectancy(found: Found, of: PopulationYear, settings: Settings) -> float:
-    if of not in found:
-        return np.nan
-    e0 = indicators.find("e0")
-    return float(indicators.estimate(e0, found[of].panel, settings).value)

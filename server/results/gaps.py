@@ -24,7 +24,7 @@ from server.results.holdings import Holdings, holdings
 from server.results.keys import CAUSE_KEYS, Items, Keys, PopulationYear
 from server.results.loading import Beside, Found, Loaded, load
 from server.results.parted import have_causes, hidden, parts_of
-from server.results.revision import Moved, moved
+from server.results.revision import Moved, life_expectancy, moved
 from server.results.with_causes import CausesOfOne
 from server.sentences import names
 from server.store.connect import Session
@@ -135,7 +135,7 @@ def gaps_of(session: Session, heading: Heading, question: GapsQuestion) -> Gaps:
         settings,
         float(question.least),
         question.figures,
-        ages=_groups(found[question.of].panel.grid),
+        ages=found[question.of].panel.grid.fives,
     )
     e0 = indicators.find("e0")
     members = [replace(question.of, area=area) for area in chosen.members]
@@ -156,16 +156,10 @@ def gaps_of(session: Session, heading: Heading, question: GapsQuestion) -> Gaps:
             heading,
             [question.of],
             beside,
-            lambda newer: _length(newer, question.of, settings),
+            life_expectancy(question.of, settings),
             figures=question.figures,
         ),
     )
-
-
-def _length(found: Found, of: PopulationYear, settings: Settings) -> float:
-    if of not in found:
-        return np.nan
-    return float(indicators.estimate(indicators.find("e0"), found[of].panel, settings).value)
 
 
 def _closed(
@@ -178,7 +172,7 @@ def _closed(
 ) -> Closed:
     of = question.of
     members = [replace(of, area=area) for area in chosen.members]
-    grid = _groups(reduce(AgeGrid.common, (found[one].panel.grid for one in (of, *members))))
+    grid = reduce(AgeGrid.common, (found[one].panel.grid for one in (of, *members))).fives
     others = [replace(of, area=area) for area in chosen.candidates]
     fine = [
         one
@@ -221,10 +215,6 @@ def _closed(
         len(everyone),
         np.any([hidden(found[one], grid, causes=causes) for one in (of, *members)], axis=0),
     )
-
-
-def _groups(grid: AgeGrid) -> AgeGrid:
-    return AgeGrid(tuple(start for start in grid.starts if start % 5 == 0 or start == 1))
 
 
 def _counted(loaded: Loaded, grid: AgeGrid, *, causes: bool) -> gaps.Counted:

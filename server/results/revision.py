@@ -4,6 +4,10 @@ import datetime as dt
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 
+import numpy as np
+
+from engine import indicators
+from engine.settings import Settings
 from server.results.loading import Beside, Found, Shared, load
 from server.results.questions import PopulationYear
 from server.store import editions
@@ -44,3 +48,15 @@ def moved(
         return None
     held = load(session, heading.collection.code, newer.number, wanted, beside, figures=figures)
     return Moved(newer.number, newer.made, headline(held))
+
+
+def life_expectancy(of: PopulationYear, settings: Settings) -> Callable[[Found], float]:
+    """The headline of pages that explain it: nan where it is not held."""
+
+    def headline(newer: Found) -> float:
+        if of not in newer:
+            return np.nan
+        one = indicators.find("e0")
+        return float(indicators.estimate(one, newer[of].panel, settings).value)
+
+    return headline

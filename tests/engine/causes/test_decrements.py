@@ -4,15 +4,16 @@ import numpy as np
 import pytest
 from numpy.testing import assert_allclose
 
-from engine.ages import AgeGrid
+from engine.ages import AgeGrid, Array
 from engine.causes.counts import CauseCounts
-from engine.causes.decrements import FAMILY, chance_before, deaths_in_table
+from engine.causes.decrements import FAMILY, chance_before
 from engine.causes.losses import EDAGGER, UNEVENNESS, years_lost
 from engine.causes.number import estimates
+from engine.causes.parting import part
 from engine.chain import run
 from engine.estimates import Reason
 from engine.panel import Panel
-from engine.settings import SETTINGS
+from engine.settings import SETTINGS, Settings
 from tests.factories import GRIDS, gompertz_panel, parted
 
 pytestmark = pytest.mark.fast
@@ -39,6 +40,13 @@ def test_two_constant_hazards() -> None:
     assert_allclose(found["mean_age"].value, [1 / m, 1 / m], rtol=1e-10)
     assert_allclose(found["edagger"].value, part / m, rtol=1e-10)
     assert_allclose(found["H"].value, part, rtol=1e-10)
+
+
+def deaths_in_table(panel: Panel, causes: CauseCounts, settings: Settings) -> Array:
+    """d(x) m_i(x) / m(x), on the panel's grid."""
+    parted = part(panel, causes, settings)
+    table = parted.chain.table
+    return table.grid.regroup(np.moveaxis(parted.share * table.dx, 0, -2), panel.grid)
 
 
 def test_deaths_of_the_table_are_parted_as_those_counted() -> None:
