@@ -14,6 +14,7 @@ from server.charts.template import LAYOUT, NARROW, PRINT, WIDE, Measure
 from server.charts.traces import traces
 
 STEP = {"age": (10, 20), "year": (5, 10)}  # of labelled ticks, wide and narrow
+FINER = (5, 1)  # where there are too few years for two of those
 
 
 def figure(chart: Chart, say: Callable[[str], str], *, separators: str = ".,") -> dict[str, Any]:
@@ -50,9 +51,13 @@ def _x_axis(chart: Chart, *, narrow: bool) -> dict[str, Any]:
         sign = "+" if low < 0 else ""  # of changes
         ticks = {"tickvals": [*chart.x_ticks], "tickformat": f"{sign},.{decimals(chart.x_ticks)}f"}
         return {**LAYOUT["xaxis"], "range": [low, high], **ticks}
-    step = STEP[chart.x_kind][narrow]
-    at = [step * index for index in range(ceil(low / step), floor(high / step) + 1)]
+    steps = (STEP[chart.x_kind][narrow], *FINER)
+    at = next((some for step in steps if len(some := _multiples(step, low, high)) > 1), [])
     return {**LAYOUT["xaxis"], "range": [low, high], "tickvals": at}
+
+
+def _multiples(step: int, low: float, high: float) -> list[int]:
+    return [step * index for index in range(ceil(low / step), floor(high / step) + 1)]
 
 
 def _y_axis(chart: Chart, measure: Measure) -> dict[str, Any]:

@@ -142,7 +142,7 @@ def _answer(found: CauseFigures) -> Sentence:
 def _lead(found: CauseFigures) -> tuple[Sentence, ...]:
     if not found.leading:
         return ()
-    said = [say.external(cause_choices.name(found.causes[at]) for at in found.leading)]
+    said = [say.external(cause_choices.name(found.causes[at]) for at in found.leading[:TOLD])]
     first = found.leading[0]
     if found.readable:
         said.append(say.meaning(found.all["e0"]))

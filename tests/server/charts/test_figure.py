@@ -212,3 +212,19 @@ def test_squares_are_as_large_as_they_are_told_and_open_below_nought() -> None:
     assert cells["marker"]["size"] == [20.0, 5.0]
     assert cells["marker"]["color"] == ["@s1", "@ground"]
     assert cells["marker"]["symbol"] == "square"
+
+
+@pytest.mark.parametrize(
+    ("years", "wide", "narrow"),
+    [
+        ((2021.0, 2022.0), [2021, 2022], [2021, 2022]),
+        ((2001.0, 2019.0), [2005, 2010, 2015], [2005, 2010, 2015]),
+        ((1999.0, 2023.0), [2000, 2005, 2010, 2015, 2020], [2000, 2010, 2020]),
+    ],
+)
+def test_however_few_years_two_are_named(
+    years: tuple[float, float], wide: list[int], narrow: list[int]
+) -> None:
+    made = figure(a_chart(x_kind="year", x_range=years), say)
+    assert made["layout"]["xaxis"]["tickvals"] == wide
+    assert made["narrow"]["xaxis"]["tickvals"] == narrow
