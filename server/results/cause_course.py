@@ -131,12 +131,14 @@ def _breaks(held: Holdings, of: PopulationYear, cause: Cause) -> tuple[Break, ..
 
 
 def wider(one: Estimate, error: Array, level: float) -> Estimate:
-    """With one more standard error, independent of chance in deaths."""
+    """With one more standard error, independent of chance in deaths. What chance alone leaves above
+    0, as it does rates, stays so."""
     out = np.nan_to_num(error)
     far = float(ndtri((1 + level) / 2)) * out
+    low = one.value - np.hypot(one.value - one.low, far)
     return replace(
         one,
-        low=one.value - np.hypot(one.value - one.low, far),
+        low=np.where(one.low >= 0, np.maximum(low, 0.0), low),
         high=one.value + np.hypot(one.high - one.value, far),
         se=np.hypot(one.se, out),
     )

@@ -161,6 +161,16 @@ def test_the_chance_of_a_surplus_is_that_of_a_binomial_count(
     assert_allclose(surplus(ours, theirs)[0, 0], right, rtol=1e-10)
 
 
+def test_what_each_one_counted_stands_for_may_differ_between_the_two() -> None:
+    ours = Counted(np.array([[14.0]]), np.array([100.0]), np.array([[7.0]]))
+    theirs = Counted(np.array([[45.0]]), np.array([900.0]), np.array([[30.0]]))
+    right = binomtest(7, 37, 50 / (50 + 600), alternative="greater").pvalue
+    assert_allclose(surplus(ours, theirs)[0, 0], right, rtol=1e-10)
+    both = ours.plus(theirs)
+    assert_allclose([both.deaths[0, 0], both.counts[0, 0]], [59.0, 37.0])
+    assert_allclose(both.less(ours).counts, theirs.counts)
+
+
 def test_named_are_those_that_holm_names() -> None:
     chance = np.random.default_rng(3).beta(0.2, 1.5, (6, 3, 21))
     named = clear(chance, 0.95)

@@ -106,6 +106,9 @@ def test_one_more_error_adds_by_squares() -> None:
     assert_allclose(found.se, np.sqrt(5) * one.se)
     assert_allclose(one.value - found.low, np.hypot(one.value - one.low, 1.959964 * error), 1e-6)
     assert wider(one, np.zeros(()), 0.95).low == one.low
+    assert wider(one, np.asarray(one.value), 0.95).low == 0  # no rate lies below
+    below = replace(one, low=np.asarray(-one.value))
+    assert wider(below, error, 0.95).low < below.low
 
 
 def test_targets_count_the_causes_of_their_codes(isle: Session) -> None:
