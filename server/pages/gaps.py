@@ -30,6 +30,7 @@ class GapsPage(Page):
     template: ClassVar[str] = "gaps/page.html"
     drawn: frozenset[str]  # keys of the pictures there are
     closed: bool  # whether there is a benchmark at all
+    by_cause: bool  # then the table has hundreds of rows, and is folded
     choice: Choice
     least: str  # person-years that an area of the benchmark has at least
     sizes: Options
@@ -61,6 +62,7 @@ def build(session: Session, heading: Heading, question: GapsQuestion) -> GapsPag
         twins=frames.twins(heading, question),
         drawn=frozenset(one.key for one in drawn),
         closed=found.closed is not None,
+        by_cause=found.closed is not None and bool(found.closed.causes),
         choice=choice(heading, found.holdings, question),
         least=question.least,
         sizes=tuple((size, whole(float(size))) for size in LEAST),

@@ -332,3 +332,8 @@ def test_under_a_policy_withheld_counts_are_nowhere(
                 decimals = head.decimals if row.decimals is None else row.decimals
                 if isinstance(cell, float) and decimals is not None:
                     assert cell == round(cell, decimals), (table.key, head.key)
+
+
+def test_gaps_of_every_age_and_cause_are_folded_those_of_ages_are_not(isle: Session) -> None:
+    assert not asked(isle, "gaps", "of=bay.m.2014").by_cause
+    assert asked(isle, "gaps", "of=bay.m.2014", 2).by_cause
