@@ -182,7 +182,7 @@ def benchmark(areas: Sequence[str], years_: Sequence[str], least: str, candidate
     return phrase(
         _(
             "The benchmark is {areas} in the same year: of {count} areas with at least {least}"
-            " person-years and ages as fine the third that lived longest in {years}, years other"
+            " person-years and ages as fine, the longest-lived third in {years}, years other"
             " than this one, so that chance in the year itself had no part in the choice."
         ),
         areas=_("{areas} together", areas=names.listed(list(areas), most=8))
