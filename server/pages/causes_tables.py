@@ -6,9 +6,10 @@ from engine.estimates import Estimate
 from engine.indicator import Unit
 from server.exports.table import Cell, Column, Gap, GapKind, Row, Table
 from server.pages import cause_choices
-from server.pages.cells import columns, count, number, triple
+from server.pages.cells import columns, count, number, triple, withheld
 from server.results.cause_course import OF as STANDARDISED
 from server.results.cause_figures import NUMBERS, PREMATURE, RATES, CauseFigures
+from server.results.parted import hidden_causes
 from server.sentences import breaks as breaks_say
 from server.sentences import causes as say
 from server.sentences import names
@@ -152,8 +153,18 @@ def by_age(found: CauseFigures) -> Table:
         ),
         Column("all", _("all causes"), decimals=3),
     )
+    hidden = hidden_causes(found.loaded, found.panel.grid, found.causes)
     rows = tuple(
-        Row((label, *(number(float(found.lost[at, x])) for at in places), _sum(found, x)))
+        Row(
+            (
+                label,
+                *(
+                    withheld() if hidden[at, x] else number(float(found.lost[at, x]))
+                    for at in places
+                ),
+                _sum(found, x),
+            )
+        )
         for x, label in enumerate(labels)
     )
     sums = [number(float(found.lost[at].sum())) for at in places]

@@ -4,7 +4,7 @@ from dataclasses import dataclass, replace
 from typing import ClassVar
 
 from server.exports.table import Table
-from server.pages import breaks, contents_tables, frames, provisional
+from server.pages import breaks, contents_tables, frames, provisional, what_would_change
 from server.pages.page import Frame, Notice, Page
 from server.results.cause_figures import held_by_cause
 from server.results.causes import CauseChoice
@@ -229,7 +229,8 @@ def _questions(
         that=that.period,
     )
     shown = held_by_cause(heading, held, this, question.figures)
-    return (*first, by_cause) if shown else first
+    further = what_would_change.ways(heading, this, *asked)
+    return (*first, by_cause, further) if shown else (*first, further)
 
 
 def _changes(heading: Heading, question: ContentsQuestion) -> tuple[int, str] | None:

@@ -101,6 +101,16 @@ def hidden(loaded: Loaded, grid: AgeGrid, *, causes: bool) -> NDArray[np.bool_]:
     return np.asarray(np.logical_or.reduceat(own, starts, axis=-1) | of_ages)
 
 
+def hidden_causes(loaded: Loaded, grid: AgeGrid, listed: Sequence[Cause]) -> NDArray[np.bool_]:
+    """As `hidden`, for the causes of a list; those that the population has no deaths of are not."""
+    if loaded.causes is None:
+        return np.broadcast_to(loaded.withheld_on(grid), (len(listed), len(grid)))
+    cells = hidden(loaded, grid, causes=True)
+    place = {cause.code: at for at, cause in enumerate(loaded.causes.list)}
+    none = np.zeros(len(grid), bool)
+    return np.array([cells[place[one.code]] if one.code in place else none for one in listed])
+
+
 def have_causes(found: Found, of: Sequence[PopulationYear]) -> bool:
     """Whether all of these are parted by the same causes."""
     lists = [found[one].causes for one in of if one in found]

@@ -66,9 +66,11 @@ def test_a_comparison_is_proposed_ten_years_apart(isle: Session) -> None:
         PopulationYear("north", "f", "2002"),
     )
     assert [period for period, _label in choice.periods] == ["2014", "2013", "2002", "2001"]
-    hrefs = [sentence[0].href for sentence in page(isle).questions]
+    questions = page(isle).questions
+    hrefs = [piece.href for sentence in questions for piece in sentence if piece.href]
     assert [href.split("?")[0].rsplit("/")[-1] for href in hrefs] == [
-        *("population-year", "comparison", "trend", "curves")
+        *("population-year", "comparison", "trend", "curves"),
+        *("what-if", "gaps", "exchange"),
     ]
 
 

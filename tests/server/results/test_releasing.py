@@ -8,6 +8,10 @@ import pytest
 from server.accounts.viewer import LOCAL
 from server.actions import masking
 from server.actions.set_policy import set_policy
+from server.results.causes import CauseChoice
+from server.results.keys import PopulationYear
+from server.results.loading import Beside, load
+from server.results.parted import hidden_causes
 from server.results.releasing import FULL, released
 from server.store import editions
 from server.store.connect import Session, transaction
@@ -78,3 +82,30 @@ def _committed(session: Session, change: Change) -> None:
     with transaction(session):
         edition = editions.write(session, prepared, by="a tester", note="", at=NOON)
         masking.keep(session, change, edition.number, made, at=NOON)
+
+
+def test_cells_by_cause_that_only_stand_in_are_told_to_pages(session: Session) -> None:
+    counts = nation_by_cause(drawn(FLAT, seed=1), seed=1)
+    deaths = {key: one for key, one in counts.items() if key.area in ("n", "a0")}
+    stored_collection(session)
+    prepared = editions.prepare(
+        session, Change("saltmarsh", 0, deaths, FLAT[:2], BASIS, causes=LIST)
+    )
+    with transaction(session):
+        editions.write(session, prepared, by="a tester", note="", at=NOON)
+    set_policy(session, collection="saltmarsh", terms=Terms(), note="Few.", by=LOCAL, now=NOON)
+    of, beside = PopulationYear("n", "f", "2001"), Beside(causes=CauseChoice(level="causes"))
+    whole, full = (
+        load(session, "saltmarsh", 1, [of], beside, figures=figures)[of]
+        for figures in ("released", "full")
+    )
+    listed = tuple(reversed(whole.causes.list)) if whole.causes else ()
+    hidden = hidden_causes(whole, whole.panel.grid, listed)
+    assert whole.causes is not None
+    assert full.causes is not None
+    assert whole.causes.list == full.causes.list
+    small = (full.causes.counts.deaths[::-1] > 0) & (full.causes.counts.deaths[::-1] < 5)
+    assert small.any()
+    assert hidden[: len(small)][small].all()
+    assert not hidden.all()
+    assert not hidden_causes(full, full.panel.grid, listed).any()
