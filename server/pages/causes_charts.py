@@ -1,5 +1,6 @@
 """Pictures of a page of causes: what each costs, at which ages, and one of them by year."""
 
+from collections.abc import Sequence
 from typing import Literal
 
 import numpy as np
@@ -20,7 +21,8 @@ from server.sentences.text import _
 NAMED = 4  # causes drawn in colours of their own
 SHOWN = 18  # rows at most
 AHEAD = 15.0  # years of age that a name takes up
-FARTHEST = 76.0  # age beyond which a name has no room on the phone
+WIDE_YEARS, NARROW_YEARS = 0.85, 2.3  # years of age that a letter takes up, and on the phone
+FARTHEST = 103.0  # age at which there is no more room for letters
 
 
 def ranked(found: CauseFigures, source: str) -> Chart | None:
@@ -95,7 +97,8 @@ def by_age(found: CauseFigures, source: str) -> Chart | None:
     most = 1.2 * float(np.nanmax(density[list(shown)]))
     named = _standing_out(density, shown, least=0.05 * most)
     others = [_line(found, density[at], at, drawn, None) for at in shown if at not in named]
-    labels = _labels(grid.mids[drawn], density[named], 0.12 * most)
+    lengths = [len(cause_choices.name(found.causes[at])) for at in named]
+    labels = _labels(grid.mids[drawn], density[named], 0.06 * most, lengths)
     lines = [
         _line(found, density[at], at, drawn, place, labels[place]) for place, at in enumerate(named)
     ]
@@ -155,13 +158,12 @@ def _line(
 
 
 def _standing_out(density: Array, shown: tuple[int, ...], *, least: float) -> list[int]:
-    """Of the causes that cost most those that somewhere lie above the others by so much: they can
-    be named on their lines."""
-    named = list(shown[:NAMED])
-    for place in reversed(range(1, len(named))):
-        if _above(density[named], place).max() < least:
-            del named[place]
-    return named
+    """Those that at some age lie above all others by so much, in the order of what they cost: their
+    names find room there. Where none does, the one that costs most."""
+    rows = density[list(shown)]
+    lead = [float(_above(rows, place).max()) for place in range(len(shown))]
+    first = sorted(range(len(shown)), key=lambda place: -lead[place])[:NAMED]
+    return [shown[place] for place in sorted(first) if lead[place] >= least] or [shown[0]]
 
 
 def _above(named: Array, place: int) -> Array:
@@ -178,21 +180,30 @@ def _apart(named: Array, place: int) -> int:
     return int(np.argmax(np.where(peaks, named[place], -1.0) if peaks.any() else above))
 
 
-def _labels(mids: Array, named: Array, near: float) -> list[At]:
+def _labels(mids: Array, named: Array, near: float, lengths: Sequence[int]) -> list[At]:
     """Where the names stand: over a peak, before a rise, behind a fall; one near another above it.
-    A peak that others overtop soon after has its name before it."""
+    A peak that others overtop soon after has its name before it, one that others overtopped shortly
+    before behind it where there is room. On the phone a name stays on the
+    picture."""
     found: list[At] = []
     for place, line in enumerate(named):
+        half = NARROW_YEARS * lengths[place] / 2
         at = _apart(named, place)
         x, y = float(mids[at]), float(line[at])
         after = float(line[at + 1]) if at + 1 < len(line) else 0.0
         ahead = (mids > x) & (mids <= x + AHEAD)
         overtopped = bool((np.delete(named, place, axis=0)[:, ahead] > y).any())
+        behind = (mids < x) & (mids >= x - AHEAD)
+        crossed = bool((np.delete(named, place, axis=0)[:, behind] > y).any())
         over = 12 + 16 * sum(abs(one.x - x) < AHEAD + 10 and abs(one.y - y) < near for one in found)
         if overtopped or after > y:
             found.append(At(x, y, "right", dx=-8, dy=4))
+        elif crossed and x + WIDE_YEARS * lengths[place] < FARTHEST:
+            begin = max(0.0, min(x, FARTHEST - 2 * half))
+            found.append(At(x, y, "left", dx=8, dy=8, narrow_x=begin, narrow_y=y + near))
         elif (float(line[at - 1]) if at else 0.0) < y:
-            found.append(At(x, y, "center", dy=over, narrow_x=min(x, FARTHEST), narrow_y=y))
+            middle = max(half, min(x, FARTHEST - half))
+            found.append(At(x, y, "center", dy=over, narrow_x=middle, narrow_y=y))
         else:
             found.append(At(x, y, "left", dx=8, dy=4))
     return found

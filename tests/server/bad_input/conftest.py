@@ -27,7 +27,8 @@ LIMIT = 1_000_000
 EDITION = "/c/saltmarsh/1"
 CHOICES = "&figures=released&settings=almanac-1"
 GOOD = f"{EDITION}/population-year?of=north.f.2001{CHOICES}"
-DRAFTS = {"upload", "upload_file", "job"}  # a draft with faults is kept, and was checked
+# a draft with faults is kept, was checked, and what it would change was worked out
+DRAFTS = {"upload", "upload_file", "job", "foreseen"}
 PROBLEM = "application/problem+json"
 
 
