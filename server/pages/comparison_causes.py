@@ -3,19 +3,17 @@
 from collections.abc import Iterable
 
 import numpy as np
-from numpy.typing import NDArray
 
 from server.charts.chart import At, Chart, Note, Series
 from server.charts.scales import ticks
 from server.exports.table import Cell, Column, Row, Table
 from server.pages.cells import columns, number, withheld
 from server.pages.comparison_charts import asked, axis, shortest_run
-from server.pages.comparison_contributions import Printed, printed
+from server.pages.comparison_contributions import Printed, hidden_cells, printed
 from server.pages.comparison_tables import pair
 from server.pages.drawing import places, values
 from server.results.cause_parts import CauseParts
 from server.results.compared import Comparison
-from server.results.parted import hidden_causes
 from server.sentences import cause_contributions as say
 from server.sentences.numbers import number as text
 from server.sentences.pieces import Sentence
@@ -308,13 +306,6 @@ def _remainder(of: CauseParts, one: Printed, columns: int) -> list[Row]:
     return [Row(("remainder", *cells), shown=words)]
 
 
-def _hidden(found: Comparison, of: CauseParts) -> NDArray[np.bool_]:
-    """Cells all of whose deaths only stand in for withheld ones on a side, [cause, group]."""
-    sides = (found.this.loaded, found.that.loaded)
-    cells = np.logical_or.reduce([hidden_causes(one, found.grid, of.list) for one in sides])
-    return np.asarray(found.grid.regroup((~cells).astype(float), found.groups) == 0)
-
-
 def _by_cell(found: Comparison, of: CauseParts) -> Table:
     """A row for every age group, a column with its limits for every cause; sums at both edges."""
     one = printed(of.key)
@@ -323,7 +314,7 @@ def _by_cell(found: Comparison, of: CauseParts) -> Table:
         label = _(cause.label or cause.code)
         heads += columns(cause.code, label, one.decimals, unit=one.unit, signed=True)
     heads.append(Column("all", _("all causes"), one.unit, one.decimals, signed=True))
-    rows, hidden = [], _hidden(found, of)
+    rows, hidden = [], hidden_cells(found, of.list)
     for group, label in enumerate(found.groups.labels):
         cells: list[Cell] = [
             withheld() if hidden[cause, group] else number(one.scale * float(part[cause, group]))

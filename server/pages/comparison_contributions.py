@@ -1,6 +1,6 @@
 """What each age adds to a difference, as tables: by groups with intervals, and age by age."""
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -12,11 +12,13 @@ from server.exports.table import Cell, Column, Row, Table
 from server.pages.cells import columns, gap, number, triple, withheld
 from server.results.compared import Comparison
 from server.results.explaining import DECOMPOSED, Contribution, decomposable
+from server.results.parted import hidden_causes
 from server.sentences import contributions as say
 from server.sentences import kinds as kinds_say
 from server.sentences import names
 from server.sentences.numbers import number as number_text
 from server.sentences.text import _
+from server.store.records import Cause
 
 
 @dataclass(frozen=True, slots=True)
@@ -72,6 +74,13 @@ def whole_group_withheld(found: Comparison) -> NDArray[np.bool_]:
     """Groups of the picture in which every age of the grid is withheld on a side, [group]."""
     shown_ages = (~found.withheld).astype(float)
     return np.asarray(found.grid.regroup(shown_ages, found.groups) == 0)
+
+
+def hidden_cells(found: Comparison, listed: Sequence[Cause]) -> NDArray[np.bool_]:
+    """Cells all of whose deaths only stand in for withheld ones on a side, [cause, group]."""
+    sides = (found.this.loaded, found.that.loaded)
+    cells = np.logical_or.reduce([hidden_causes(one, found.grid, listed) for one in sides])
+    return np.asarray(found.grid.regroup((~cells).astype(float), found.groups) == 0)
 
 
 def _triple(found: Comparison, one: Printed, at: int) -> Iterable[Cell]:

@@ -39,8 +39,9 @@ def chromium() -> str | None:
     return shutil.which("chromium") or shutil.which("chromium-browser")
 
 
-@pytest.fixture(scope="session")
+@pytest.fixture(scope="module")
 def browser() -> Iterator[Browser]:
+    """One for a file of tests: its loop of events would be in the way of other tests."""
     program = chromium()
     if program is None:
         why = "Chromium not found; on Debian: apt-get install chromium"
