@@ -3,10 +3,9 @@
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 
-from server.results.causes import NOT_STATED
 from server.store.causes import in_tree_order, leaves
 from server.store.errors import Refused
-from server.store.records import Cause, Key
+from server.store.records import NOT_STATED, Cause, Key
 
 
 @dataclass(frozen=True, slots=True)
@@ -58,12 +57,12 @@ def _codes(causes: Iterable[Cause]) -> frozenset[str]:
 
 
 def _require_free(listed: tuple[Cause, ...]) -> None:
-    if NOT_STATED.code in _codes(listed):
+    if NOT_STATED in _codes(listed):
         raise Refused(
             "The list of causes has the code {code}, under which deaths of no stated cause are "
             "shown: all deaths less those of the causes. Give that cause another code, or take it "
             "out of the list and hand in such deaths without a cause.",
-            code=NOT_STATED.code,
+            code=NOT_STATED,
         )
 
 

@@ -25,11 +25,20 @@ from server.disclosure.history import State, as_block, fresh_of, withheld_before
 from server.disclosure.showing import shown
 from server.disclosure.standing_in import stand_ins
 from server.disclosure.withholding import by_schedule, kept_secret, small
-from server.store.records import Area, Cause, Hidden, Key, Mask, Terms, Unprotected, Vector
+from server.store.records import (
+    NOT_STATED,
+    Area,
+    Cause,
+    Hidden,
+    Key,
+    Mask,
+    Terms,
+    Unprotected,
+    Vector,
+)
 
 Cells = Mapping[Key, Vector]
 ALL = "all causes"  # the whole of the table, where areas have the one they are part of
-NOT_STATED = "not-stated"  # all deaths less those of the list
 _NOTHING = 1e-6
 _MEASURES = ("deaths", "counted_deaths")
 

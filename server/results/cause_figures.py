@@ -14,11 +14,12 @@ from engine.causes.number import estimates as by_cause
 from engine.estimates import Estimate
 from engine.indicator import Indicator
 from engine.panel import Panel
-from engine.settings import Settings, span
+from engine.settings import Settings
 from server.results.cause_course import Course, course, wider
-from server.results.causes import APPLIED, CAUSES, NOT_STATED, CauseChoice, Causes, Listed
+from server.results.causes import CAUSES, NOT_STATED, CauseChoice, Causes, Listed
 from server.results.holdings import Holdings, NotInEdition, holdings
-from server.results.loading import Beside, Found, Loaded, assembled, needed
+from server.results.loading import Beside, Found, assembled, needed
+from server.results.of_one import OfOne
 from server.results.questions import CausesQuestion, PopulationYear
 from server.results.releasing import released
 from server.results.revision import Moved, life_expectancy, moved
@@ -49,14 +50,10 @@ class Avoidable:
 
 
 @dataclass(frozen=True, slots=True)
-class CauseFigures:
+class CauseFigures(OfOne):
     """One population-year by cause. Numbers of causes are [cause], in the order of `causes`."""
 
-    heading: Heading
-    holdings: Holdings
     question: CausesQuestion
-    settings: Settings
-    loaded: Loaded
     held: Causes  # as the address asks for them
     leaves: Causes  # the causes without parts
     deaths: rates.CauseShare
@@ -69,26 +66,12 @@ class CauseFigures:
     moved: Moved | None
 
     @property
-    def of(self) -> PopulationYear:
-        return self.question.of
-
-    @property
     def causes(self) -> tuple[Cause, ...]:
         return self.held.list
 
     @property
     def panel(self) -> Panel:
         return self.loaded.panel
-
-    @property
-    def period(self) -> str:
-        """The year, or the years added up."""
-        return names.years(span(self.of.period, self.settings.years))
-
-    @property
-    def name(self) -> str:
-        """The area's name."""
-        return self.holdings.name(self.of.area)
 
     @property
     def readable(self) -> bool:
@@ -136,12 +119,7 @@ def cause_figures(session: Session, heading: Heading, question: CausesQuestion) 
     wanted = _years(held, question.of, settings)
     beside = replace(Beside.of(settings, held.areas), causes=choice)
     cells = released(session, collection, number, needed(wanted, beside), question.figures)
-    listed = Listed(
-        held.causes,
-        tuple(one for one in held.breaks if one.cause and one.ratio is not None)
-        if choice.ratios == APPLIED
-        else (),
-    )
+    listed = Listed.chosen(held.causes, held.breaks, choice)
     fine = replace(beside, causes=replace(choice, level=CAUSES))
     leaves = assembled(cells, wanted, fine, listed)
     shown = leaves if choice == fine.causes else assembled(cells, [question.of], beside, listed)

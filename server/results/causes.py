@@ -1,6 +1,6 @@
 """Deaths by cause of a population-year, and how a reader chooses to see them."""
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 from typing import ClassVar, Self
 
@@ -9,12 +9,14 @@ from numpy.typing import NDArray
 
 from engine.ages import Array
 from engine.causes.counts import CauseCounts
-from server.store import breaks
+from server.store import breaks, records
 from server.store import causes as lists
 from server.store.connect import Session
 from server.store.records import Break, Cause
 
-NOT_STATED = Cause("not-stated", "Cause not stated", kind="ill_defined")  # all less the causes
+NOT_STATED = Cause(
+    records.NOT_STATED, "Cause not stated", kind="ill_defined"
+)  # all less the causes
 APPLIED, SPREAD, CAUSES = "applied", "spread", "causes"
 
 
@@ -83,8 +85,16 @@ class Listed:
         found = lists.listing(session, collection, number)
         if choice.ratios != APPLIED or not found:
             return cls(found)
-        stated = breaks.listing(session, collection, number)
-        return cls(found, tuple(one for one in stated if one.cause and one.ratio is not None))
+        return cls.chosen(found, breaks.listing(session, collection, number), choice)
+
+    @classmethod
+    def chosen(
+        cls, causes: tuple[Cause, ...], stated: Iterable[Break], choice: CauseChoice
+    ) -> Self:
+        """From what is held: the ratios only where they are applied."""
+        if choice.ratios != APPLIED:
+            return cls(causes)
+        return cls(causes, tuple(one for one in stated if one.cause and one.ratio is not None))
 
     @property
     def leaves(self) -> tuple[Cause, ...]:

@@ -11,15 +11,15 @@ from engine import settings as named
 from engine.ages import Array
 from engine.chain import Chain, run
 from engine.panel import Panel
-from engine.settings import Settings, span
+from engine.settings import Settings
 from engine.smooth_bands import averaged
 from engine.stages.smoothing import LEAST_GROUPS, adult_counts, adult_groups
-from server.results.holdings import Holdings, holdings
+from server.results.holdings import holdings
 from server.results.laws import Fitted, Limited, best, fitted, fitted_one, limited
-from server.results.loading import Beside, Found, Loaded, load
+from server.results.loading import Beside, Found, load
+from server.results.of_one import OfOne
 from server.results.questions import CurvesQuestion, PopulationYear
 from server.results.revision import Moved, moved
-from server.sentences import names
 from server.store.connect import Session
 from server.store.heading import Heading
 
@@ -74,14 +74,10 @@ class Related:
 
 
 @dataclass(frozen=True, slots=True)
-class Curves:
+class Curves(OfOne):
     """One population-year, its death rates described in every way."""
 
-    heading: Heading
-    holdings: Holdings
     question: CurvesQuestion
-    settings: Settings
-    loaded: Loaded
     chain: Chain
     laws: tuple[Fitted, ...]  # none where too few person-years were lived
     best: Fitted | None
@@ -91,10 +87,6 @@ class Curves:
     moved: Moved | None
 
     @property
-    def of(self) -> PopulationYear:
-        return self.question.of
-
-    @property
     def withheld(self) -> NDArray[np.bool_]:
         """Groups whose deaths are withheld, [age]."""
         return self.loaded.withheld_on(self.panel.grid)
@@ -102,16 +94,6 @@ class Curves:
     @property
     def panel(self) -> Panel:
         return self.loaded.panel
-
-    @property
-    def period(self) -> str:
-        """The year, or the years added up."""
-        return names.years(span(self.of.period, self.settings.years))
-
-    @property
-    def name(self) -> str:
-        """The area's name."""
-        return self.holdings.name(self.of.area)
 
     @property
     def parent(self) -> str:

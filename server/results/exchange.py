@@ -11,16 +11,14 @@ from engine import settings as named
 from engine.chain import Chain, run
 from engine.estimates import Estimate
 from engine.sensitivity import ONE_MONTH, Avoidable, deaths_to_avoid
-from engine.settings import Settings, span
 from engine.whatif_reach import Reach, uniform
 from server.results.causes import CauseChoice
-from server.results.holdings import Holdings, holdings
-from server.results.keys import PopulationYear
-from server.results.loading import Beside, Loaded, load
+from server.results.holdings import holdings
+from server.results.loading import Beside, load
+from server.results.of_one import OfOne
 from server.results.parted import Parted, hidden, parted
 from server.results.revision import Moved, life_expectancy, moved
 from server.results.with_causes import CausesOfOne
-from server.sentences import names
 from server.store.connect import Session
 from server.store.heading import Heading
 
@@ -33,14 +31,10 @@ class ExchangeQuestion(CausesOfOne):
 
 
 @dataclass(frozen=True, slots=True)
-class Exchange:
+class Exchange(OfOne):
     """Deaths for a month of life expectancy, of one population-year."""
 
-    heading: Heading
-    holdings: Holdings
     question: ExchangeQuestion
-    settings: Settings
-    loaded: Loaded
     chain: Chain
     e0: Estimate
     avoidable: Avoidable  # by age alone: of whichever cause
@@ -48,19 +42,6 @@ class Exchange:
     everywhere: Reach  # the factor on all death rates that makes a month
     by_cause: Reach  # and on those of each cause, [cause]
     moved: Moved | None
-
-    @property
-    def of(self) -> PopulationYear:
-        return self.question.of
-
-    @property
-    def name(self) -> str:
-        return self.holdings.name(self.of.area)
-
-    @property
-    def period(self) -> str:
-        """The year, or the years added up."""
-        return names.years(span(self.of.period, self.settings.years))
 
     @property
     def readable(self) -> bool:

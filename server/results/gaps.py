@@ -15,7 +15,7 @@ from engine.ages import AgeGrid, Array
 from engine.chain import gradient, run
 from engine.estimates import Estimate
 from engine.panel import Panel
-from engine.settings import Settings, span
+from engine.settings import Settings
 from engine.whatif import Benchmark, Change, Parts
 from engine.whatif_numbers import WhatIf, what_if
 from server.results.benchmark import Chosen, choose
@@ -23,10 +23,10 @@ from server.results.causes import CauseChoice
 from server.results.holdings import Holdings, holdings
 from server.results.keys import CAUSE_KEYS, Items, Keys, PopulationYear
 from server.results.loading import Beside, Found, Loaded, load
+from server.results.of_one import OfOne
 from server.results.parted import have_causes, hidden, parts_of
 from server.results.revision import Moved, life_expectancy, moved
 from server.results.with_causes import CausesOfOne
-from server.sentences import names
 from server.store.connect import Session
 from server.store.heading import Heading
 from server.store.records import Cause
@@ -79,32 +79,15 @@ class Closed:
 
 
 @dataclass(frozen=True, slots=True)
-class Gaps:
+class Gaps(OfOne):
     """All that a page of gaps says."""
 
-    heading: Heading
-    holdings: Holdings
     question: GapsQuestion
-    settings: Settings
-    loaded: Loaded
     e0: Estimate
     chosen: Chosen
     protected: tuple[Loaded, ...]  # the area and those of the benchmark
     closed: Closed | None  # None where there is no benchmark, or no life expectancy
     moved: Moved | None
-
-    @property
-    def of(self) -> PopulationYear:
-        return self.question.of
-
-    @property
-    def name(self) -> str:
-        return self.holdings.name(self.of.area)
-
-    @property
-    def period(self) -> str:
-        """The year, or the years added up."""
-        return names.years(span(self.of.period, self.settings.years))
 
     @property
     def own_benchmark(self) -> bool:

@@ -9,13 +9,12 @@ from numpy.typing import NDArray
 
 from engine.ages import AgeGrid
 from engine.panel import Panel
-from engine.whatif import Parts
+from engine.whatif import SEXES, Parts
 from server.results.holdings import Holdings
 from server.results.keys import PopulationYear
 from server.results.loading import Found, Loaded, Shared, overlap
 from server.store.records import Cause
 
-SEXES = ("f", "m")
 NEAR = 1e-9  # relative; so far women and men may be from persons, by the rounding of sums
 
 

@@ -13,8 +13,9 @@ from engine.estimates import Estimate, Reason
 from engine.settings import Settings, span
 from server.results import models
 from server.results.estimating import COMPARED, EVERY, differences, estimates, stream
-from server.results.holdings import Holdings, holdings
+from server.results.holdings import holdings
 from server.results.loading import Beside, Found, Loaded, load
+from server.results.of_one import OfOne
 from server.results.protecting import all_protected, protected
 from server.results.questions import PopulationYear, PopulationYearQuestion
 from server.results.revision import Moved, moved
@@ -38,14 +39,10 @@ class Before:
 
 
 @dataclass(frozen=True, slots=True)
-class Findings:
+class Findings(OfOne):
     """One population-year, read in every way."""
 
-    heading: Heading
-    holdings: Holdings
     question: PopulationYearQuestion
-    settings: Settings
-    loaded: Loaded
     chain: Chain
     estimates: dict[str, Estimate]
     before: Before | None  # None where the edition lacks the year before
@@ -56,15 +53,6 @@ class Findings:
     avoidable: sensitivity.Avoidable  # deaths to avoid for a month of life expectancy at birth
     implied: models.Implied | None  # None where the area is part of no larger one
     moved: Moved | None
-
-    @property
-    def of(self) -> PopulationYear:
-        return self.question.of
-
-    @property
-    def period(self) -> str:
-        """The year, or the years added up."""
-        return names.years(span(self.of.period, self.settings.years))
 
     @property
     def withheld(self) -> NDArray[np.bool_]:
@@ -87,11 +75,6 @@ class Findings:
     def gainful(self) -> bool:
         """Whether it is known what lower death rates would add."""
         return self.readable and bool(np.isfinite(self.gain).all() and self.gain.any())
-
-    @property
-    def name(self) -> str:
-        """The area's name."""
-        return self.holdings.name(self.of.area)
 
 
 def population_year(

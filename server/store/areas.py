@@ -10,6 +10,7 @@ from server.store import collections
 from server.store.errors import Refused
 from server.store.records import Area
 from server.store.tables import AreaName, AreaRange
+from server.store.trees import from_tops
 
 
 def listing(session: Session, collection: str, number: int) -> tuple[Area, ...]:
@@ -50,8 +51,8 @@ def in_tree_order(areas: Iterable[Area]) -> tuple[Area, ...]:
     Raises: Refused where a parent is not among them, or an area lies inside itself.
     """
     by_code = {area.code: area for area in areas}
-    parts: dict[str, list[Area]] = {}
-    for area in sorted(by_code.values(), key=lambda area: area.code, reverse=True):
+    listed = sorted(by_code.values(), key=lambda area: area.code)
+    for area in reversed(listed):
         if area.parent and area.parent not in by_code:
             raise Refused(
                 "Area {area} is said to be part of {parent}, which is not among the areas. "
@@ -59,16 +60,10 @@ def in_tree_order(areas: Iterable[Area]) -> tuple[Area, ...]:
                 area=area.code,
                 parent=area.parent,
             )
-        parts.setdefault(area.parent, []).append(area)
-    ordered, waiting = [], parts.pop("", [])
-    while waiting:
-        area = waiting.pop()
-        ordered.append(area)
-        waiting.extend(parts.pop(area.code, []))
-    if parts:
-        inside = sorted(part.code for several in parts.values() for part in several)
+    ordered = from_tops(listed)
+    if inside := sorted(by_code.keys() - {area.code for area in ordered}):
         raise Refused(
             "Areas {areas} lie inside themselves. Correct their parents so that they form a tree.",
             areas=", ".join(inside),
         )
-    return tuple(ordered)
+    return ordered

@@ -10,6 +10,7 @@ from server.store import collections
 from server.store.errors import Refused
 from server.store.records import Cause
 from server.store.tables import CauseLabel, CauseRange
+from server.store.trees import from_tops
 
 
 def listing(session: Session, collection: str, number: int) -> tuple[Cause, ...]:
@@ -80,7 +81,6 @@ def in_tree_order(causes: Iterable[Cause]) -> tuple[Cause, ...]:
     """
     listed = tuple(causes)
     codes = {cause.code for cause in listed}
-    parts: dict[str, list[Cause]] = {}
     for cause in listed:
         if cause.parent and cause.parent not in codes:
             raise Refused(
@@ -89,21 +89,14 @@ def in_tree_order(causes: Iterable[Cause]) -> tuple[Cause, ...]:
                 cause=cause.code,
                 parent=cause.parent,
             )
-        parts.setdefault(cause.parent, []).append(cause)
-    ordered: list[Cause] = []
-    waiting = parts.pop("", [])[::-1]
-    while waiting:
-        cause = waiting.pop()
-        ordered.append(cause)
-        waiting.extend(parts.pop(cause.code, [])[::-1])
-    if parts:
-        inside = sorted(part.code for several in parts.values() for part in several)
+    ordered = from_tops(listed)
+    if inside := sorted(codes - {cause.code for cause in ordered}):
         raise Refused(
             "Causes {causes} are part of themselves. Correct what they are part of, so that the "
             "list forms a tree.",
             causes=", ".join(inside),
         )
-    return tuple(ordered)
+    return ordered
 
 
 def leaves(causes: Iterable[Cause]) -> tuple[Cause, ...]:

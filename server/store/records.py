@@ -69,6 +69,7 @@ class Break:
 
 
 CAUSE_KINDS = ("natural", "external", "undetermined", "ill_defined", "pending", "not_underlying")
+NOT_STATED = "not-stated"  # code of all deaths less those of the causes; in no list
 CARE = ("suicide", "overdose", "violence")  # pages on such deaths follow reporting cautions
 
 
