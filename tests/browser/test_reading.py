@@ -1,29 +1,11 @@
 """Every page as it is read: drawn, quiet, accessible, no wider than the screen."""
 
 import pytest
-from playwright.sync_api import Page
 
 from tests.browser.conftest import Enter
+from tests.browser.order import in_order
 from tests.browser.site import Site
 from tests.browser.tour import READ, REFUSED
-from tests.browser.visitor import Visitor
-
-OPEN_FOLDS = "() => document.querySelectorAll('details').forEach(fold => { fold.open = true })"
-TOO_WIDE = "() => document.documentElement.scrollWidth - document.documentElement.clientWidth"
-FITS = f"() => ({TOO_WIDE})() <= 0"
-
-
-def in_order(visitor: Visitor, path: str) -> Page:
-    """The page, drawn, accessible and no wider than the screen, with its folds closed and open."""
-    page = visitor.goto(path)
-    visitor.drawn()
-    assert page.locator("h1.answer").inner_text().strip()
-    assert page.evaluate(TOO_WIDE) <= 0
-    assert visitor.axe() == []
-    page.evaluate(OPEN_FOLDS)
-    assert visitor.axe() == []
-    assert page.evaluate(TOO_WIDE) <= 0
-    return page
 
 
 @pytest.mark.parametrize("name", READ)
@@ -35,15 +17,6 @@ def test_a_page_is_drawn_and_accessible_and_stands_without_scripts(
     assert plain.locator("h1.answer").is_visible()
     assert plain.locator("h1.answer").inner_text() == page.locator("h1.answer").inner_text()
     assert plain.locator("table").count() == page.locator("table").count()
-
-
-@pytest.mark.parametrize("name", READ)
-def test_a_page_is_in_order_on_a_narrow_screen_and_reflows_at_320_pixels(
-    demo_site: Site, visit: Enter, name: str
-) -> None:
-    page = in_order(visit(demo_site, size="narrow"), READ[name])
-    page.set_viewport_size({"width": 320, "height": 700})
-    page.wait_for_function(FITS)  # charts are drawn anew
 
 
 @pytest.mark.parametrize("name", ["population-year", "comparison", "trend", "upload-new"])
